@@ -1,0 +1,230 @@
+//! What a workbook says, resolved: options, years, streams and targets, each with its cells.
+
+use chrono::NaiveDate;
+use hence_core::Timing;
+
+use crate::problem::Problem;
+use crate::references::SheetRange;
+
+/// The direction in which the years run.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Direction {
+    /// Along a row.
+    Across,
+    /// Down a column.
+    Down,
+}
+
+/// One entry of the years.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Label {
+    /// A calendar year, 1000 to 9999.
+    Year(i32),
+    /// A year number (0, 1, 2, ...), counted from the base.
+    Number(i32),
+    /// A financial year by its first calendar year, with the text in the cell (2025/26, FY26).
+    Financial(i32, String),
+    /// A date.
+    Date(NaiveDate),
+    /// An offset in years, from the role `offsets`.
+    Offset(f64),
+}
+
+/// The years of one or more options: one range of cells and what each cell says.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Axis {
+    /// The cells.
+    pub at: SheetRange,
+    /// Which way they run.
+    pub direction: Direction,
+    /// One label a cell, in order.
+    pub labels: Vec<Label>,
+}
+
+/// Something the workbook states, with the cell it was read from (none when it came from elsewhere).
+#[derive(Clone, Debug, PartialEq)]
+pub struct Given<T> {
+    /// What it says.
+    pub value: T,
+    /// Its cell.
+    pub at: Option<SheetRange>,
+    /// In words: `hence_base`, `command line`, `schedule uk-2003`, `default`.
+    pub from: String,
+}
+
+/// The base as stated.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Base {
+    /// A calendar year.
+    Year(i32),
+    /// A financial year by its first calendar year.
+    Financial(i32),
+    /// A date.
+    Date(NaiveDate),
+    /// Year number 0 of years that are numbers.
+    Zero,
+}
+
+/// Which side of the ledger a stream is on.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum StreamKind {
+    /// Counts against (below the line of the ratio).
+    Cost,
+    /// Counts for (above the line).
+    Benefit,
+    /// Net: positive counts for, negative against; above the line of the ratio.
+    Flow,
+    /// A damage: counts as a benefit where it falls below the baseline's.
+    Damage,
+}
+
+/// One stream of flows.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Stream {
+    /// Its name with underscores as spaces: "works".
+    pub name: String,
+    /// Its side.
+    pub kind: StreamKind,
+    /// The defined name (or block and row) it was found by.
+    pub from: String,
+    /// Its cells, as many as the years and in their direction.
+    pub at: SheetRange,
+    /// The numbers in the cells; a blank is 0.
+    pub raw: Vec<f64>,
+    /// What multiplies every flow: +1 or -1, from `signs`.
+    pub sign: f64,
+    /// Units of one: 1, 1e3, 1e6, from `unit_<stream>`.
+    pub unit: f64,
+    /// A share added (optimism bias): 0.2 is 20%, from `uplift_<stream>`.
+    pub uplift: Given<f64>,
+    /// A value at the last year, in the stream's unit and sign: it lowers a cost, raises a benefit.
+    pub residual: Option<Given<f64>>,
+    /// What follows the last year.
+    pub tail: Option<Given<hence_core::Tail>>,
+}
+
+/// A physical effect (tonnes, life-years), for cost per unit.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Effect {
+    /// Its name.
+    pub name: String,
+    /// Its cells.
+    pub at: SheetRange,
+    /// Its quantities.
+    pub raw: Vec<f64>,
+}
+
+/// What is to be written into a target.
+#[derive(Clone, Debug, PartialEq, Eq, Hash)]
+pub enum TargetRole {
+    /// A factor a year.
+    Factor,
+    /// PV by year of a stream, or of the net where there is no stream.
+    PvByYear(Option<String>),
+    /// PV in one cell, of a stream or of the net.
+    PvTotal(Option<String>),
+    /// PV of costs.
+    PvCosts,
+    /// PV of benefits.
+    PvBenefits,
+    /// Net present value.
+    Npv,
+    /// Benefit-cost ratio.
+    Ratio,
+    /// Annual equivalent.
+    Annual,
+    /// The internal rate of return, or text.
+    Irr,
+    /// The discounted payback in years, or text.
+    Payback,
+    /// The workbook's own yearly rates.
+    Rates,
+}
+
+/// What a target cell holds now.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Held {
+    /// Nothing.
+    Blank,
+    /// A number, typed.
+    Number(f64),
+    /// A text, typed.
+    Text(String),
+    /// A formula with its cached value.
+    Formula {
+        /// Its text, without the equals sign.
+        text: String,
+        /// Its cached value, where that is a number.
+        value: Option<f64>,
+    },
+    /// An error value.
+    Error(String),
+}
+
+/// A range to be filled.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Target {
+    /// What goes in.
+    pub role: TargetRole,
+    /// The defined name it was found by.
+    pub from: String,
+    /// Its cells.
+    pub at: SheetRange,
+    /// What each cell holds now, in order.
+    pub held: Vec<Held>,
+    /// Each cell's number format code, where it has one ("0.0000"); for the tolerance of totals.
+    pub formats: Vec<Option<String>>,
+}
+
+/// One of the alternatives compared.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Choice {
+    /// Its name; the sheet's where the workbook names no option.
+    pub name: String,
+    /// The base.
+    pub base: Given<Base>,
+    /// The basis: a rate line, a schedule id or a number as text.
+    pub basis: Given<String>,
+    /// The timing as stated in the workbook, where it is.
+    pub timing: Option<Given<Timing>>,
+    /// Index into [`Appraisal::axes`].
+    pub axis: usize,
+    /// Its streams, shared ones included.
+    pub streams: Vec<Stream>,
+    /// Its physical effects.
+    pub effects: Vec<Effect>,
+    /// Names of the streams that are the constrained cost.
+    pub budget: Vec<String>,
+    /// What is to be filled.
+    pub targets: Vec<Target>,
+}
+
+/// A numeric row along the years, for the coverage sheet.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Covered {
+    /// The cells, as long as the years.
+    pub at: SheetRange,
+    /// The text beside it.
+    pub heading: String,
+    /// Its roles in words ("cost: works"), or empty for "not valued".
+    pub roles: Vec<String>,
+    /// The undiscounted sum of its numbers.
+    pub total: f64,
+}
+
+/// Everything that fill and check need of a workbook.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Appraisal {
+    /// Every distinct range of years.
+    pub axes: Vec<Axis>,
+    /// The options, in the order of their sheets or names.
+    pub choices: Vec<Choice>,
+    /// Which of them is the baseline.
+    pub baseline: Option<usize>,
+    /// Every numeric row along the years, valued or not.
+    pub coverage: Vec<Covered>,
+    /// Warnings and notes found on the way.
+    pub problems: Vec<Problem>,
+    /// The workbook counts days from 1904.
+    pub date1904: bool,
+}

@@ -1,0 +1,146 @@
+//! What is wrong with a workbook, where, and what to do: problems, and the error that ends a run.
+
+use std::fmt;
+
+use crate::references::{Range, quote_sheet};
+
+/// How bad a problem is.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, serde::Serialize)]
+#[serde(rename_all = "lowercase")]
+pub enum Severity {
+    /// Worth knowing; changes nothing.
+    Note,
+    /// The run goes on; the report and the audit sheets say so.
+    Warning,
+    /// The workbook is not filled.
+    Error,
+}
+
+/// Where in a workbook a problem is.
+#[derive(Clone, Debug, Default, PartialEq, Eq, Hash)]
+pub struct Place {
+    /// The sheet's name as the user sees it.
+    pub sheet: Option<String>,
+    /// The cells.
+    pub range: Option<Range>,
+    /// The defined name or heading it goes by.
+    pub name: Option<String>,
+}
+
+impl Place {
+    /// Cells of a sheet.
+    pub fn cells(sheet: &str, range: Range) -> Self {
+        Place { sheet: Some(sheet.to_owned()), range: Some(range), name: None }
+    }
+
+    /// A defined name, where it has no cells to point at.
+    pub fn name(name: &str) -> Self {
+        Place { sheet: None, range: None, name: Some(name.to_owned()) }
+    }
+
+    /// Adds the defined name or heading in brackets.
+    #[must_use]
+    pub fn called(mut self, name: &str) -> Self {
+        self.name = Some(name.to_owned());
+        self
+    }
+}
+
+impl fmt::Display for Place {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        match (&self.sheet, self.range, &self.name) {
+            (Some(sheet), Some(range), name) => {
+                write!(f, "{}!{range}", quote_sheet(sheet))?;
+                name.as_ref().map_or(Ok(()), |name| write!(f, " [{name}]"))
+            }
+            (Some(sheet), None, name) => {
+                write!(f, "{}", quote_sheet(sheet))?;
+                name.as_ref().map_or(Ok(()), |name| write!(f, " [{name}]"))
+            }
+            (None, _, Some(name)) => write!(f, "[{name}]"),
+            (None, _, None) => write!(f, "workbook"),
+        }
+    }
+}
+
+/// One problem. Codes are short stable kebab words, listed in [`CODES`].
+#[derive(Clone, Debug, PartialEq, Eq, Hash)]
+pub struct Problem {
+    /// The stable word.
+    pub code: &'static str,
+    /// How bad it is.
+    pub severity: Severity,
+    /// Where it is.
+    pub place: Place,
+    /// What was found and what is allowed.
+    pub message: String,
+    /// What to do, as a phrase after "Try:".
+    pub hint: Option<String>,
+}
+
+impl Problem {
+    /// A problem that keeps the workbook from being filled.
+    pub fn error(code: &'static str, place: Place, message: impl Into<String>) -> Self {
+        Problem { code, severity: Severity::Error, place, message: message.into(), hint: None }
+    }
+
+    /// A problem that is reported while the run goes on.
+    pub fn warning(code: &'static str, place: Place, message: impl Into<String>) -> Self {
+        Problem { severity: Severity::Warning, ..Problem::error(code, place, message) }
+    }
+
+    /// Adds what to do about it.
+    #[must_use]
+    pub fn hint(mut self, hint: impl Into<String>) -> Self {
+        self.hint = Some(hint.into());
+        self
+    }
+}
+
+impl fmt::Display for Problem {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        write!(f, "{}: {} ({})", self.place, self.message, self.code)
+    }
+}
+
+/// The error of this crate: the run on this workbook ended, and no output was left.
+#[derive(Debug)]
+pub struct WorkbookError {
+    problems: Vec<Problem>,
+}
+
+/// The result of a fallible function of this crate.
+pub type Result<T> = std::result::Result<T, WorkbookError>;
+
+impl WorkbookError {
+    /// Everything that was found, errors and warnings, in sheet order.
+    pub fn problems(&self) -> &[Problem] {
+        &self.problems
+    }
+}
+
+impl From<Problem> for WorkbookError {
+    fn from(problem: Problem) -> Self {
+        WorkbookError { problems: vec![problem] }
+    }
+}
+
+impl From<Vec<Problem>> for WorkbookError {
+    fn from(problems: Vec<Problem>) -> Self {
+        WorkbookError { problems }
+    }
+}
+
+impl fmt::Display for WorkbookError {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        for (i, problem) in self.problems.iter().enumerate() {
+            if i > 0 {
+                writeln!(f)?;
+            }
+            write!(f, "{problem}")?;
+        }
+        Ok(())
+    }
+}
+
+impl std::error::Error for WorkbookError {}
