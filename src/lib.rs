@@ -6,8 +6,35 @@
 //!
 //! Rates are fractions per year (0.035 is 3.5%), offsets are years from the base. Nothing is rounded.
 
+mod basis;
+mod calendar;
+mod curve;
+mod dd;
 mod error;
+mod evidence;
+mod irr;
+mod measures;
+mod prices;
+mod rateline;
+mod schedule;
 mod spec;
+mod sum;
+mod tail;
+mod timing;
 
+pub use basis::{Basis, Catalogue, PriceBasis};
+pub use calendar::{DayCount, offset_of_dates, parse_financial_year};
+pub use curve::Curve;
 pub use error::{Error, ErrorKind, Result};
+pub use evidence::{elasticity_from_taxes, equity_weight, ramsey_rate};
+pub use irr::{IrrSearch, internal_rates};
+pub use measures::{
+    Eras, Payback, annual_equivalent, benefit_cost_ratio, discounted_payback, era_shares, mean_time,
+    net_present_value, present_value, present_values,
+};
+pub use prices::{nominal_rate, real_flows, real_rate};
+pub use schedule::{Schedule, ScheduleStatus};
 pub use spec::{Band, Compounding, Edge, HorizonRule, Spec, Where};
+pub use sum::{ExactSum, dot, sum};
+pub use tail::Tail;
+pub use timing::{Position, Timing};

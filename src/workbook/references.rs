@@ -33,3 +33,35 @@ pub struct SheetRange {
     /// The cells.
     pub range: Range,
 }
+
+/// A sheet's name as formulas write it: quoted where it needs to be.
+pub fn quote_sheet(name: &str) -> String {
+    let plain = name
+        .chars()
+        .enumerate()
+        .all(|(i, c)| c == '_' || c.is_ascii_alphabetic() || (i > 0 && c.is_ascii_digit()));
+    if plain { name.to_owned() } else { format!("'{}'", name.replace('\'', "''")) }
+}
+
+impl fmt::Display for Cell {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        let mut letters = Vec::new();
+        let mut n = self.col + 1;
+        while n > 0 {
+            letters.push(b'A' + ((n - 1) % 26) as u8);
+            n = (n - 1) / 26;
+        }
+        letters.reverse();
+        write!(f, "{}{}", String::from_utf8_lossy(&letters), self.row + 1)
+    }
+}
+
+impl fmt::Display for Range {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        if self.first == self.last {
+            write!(f, "{}", self.first)
+        } else {
+            write!(f, "{}:{}", self.first, self.last)
+        }
+    }
+}
