@@ -96,7 +96,8 @@ fn manual() -> Result<Outcome, Failure> {
         page.render_description_section(&mut text)?;
         page.render_options_section(&mut text)?;
     }
-    let text = String::from_utf8_lossy(&text).replace(".SH SYNOPSIS\n\\fBhence\\fR", ".SH SYNOPSIS\n\\fBhence\\fR");
+    let text =
+        String::from_utf8_lossy(&text).replace(".SH SYNOPSIS\n\\fBhence\\fR", ".SH SYNOPSIS\n\\fBhence\\fR");
     terminal::print(&text)?;
     Ok(Outcome::Done)
 }

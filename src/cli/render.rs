@@ -80,7 +80,8 @@ pub fn report(input: &str, output: &str, report: &Report) -> String {
 fn grouped(options: &[OptionReport]) -> Vec<(Vec<&str>, &OptionReport)> {
     let mut groups: Vec<(Vec<&str>, &OptionReport)> = Vec::new();
     for option in options {
-        let same = |o: &OptionReport| o.basis == option.basis && o.base == option.base && o.timing == option.timing;
+        let same =
+            |o: &OptionReport| o.basis == option.basis && o.base == option.base && o.timing == option.timing;
         match groups.iter_mut().find(|(_, o)| same(o)) {
             Some((names, _)) => names.push(&option.name),
             None => groups.push((vec![&option.name], option)),
@@ -140,9 +141,13 @@ fn details(option: &OptionReport) -> String {
             text.push_str(&format!("; discounted payback after {first:.1} years"));
         }
         (Some(first), Some(last)) => {
-            text.push_str(&format!("; discounted payback first after {first:.1}, for good after {last:.1} years"));
+            text.push_str(&format!(
+                "; discounted payback first after {first:.1}, for good after {last:.1} years"
+            ));
         }
-        (Some(first), None) => text.push_str(&format!("; pays back after {first:.1} years, but not for good")),
+        (Some(first), None) => {
+            text.push_str(&format!("; pays back after {first:.1} years, but not for good"))
+        }
         _ => text.push_str("; no discounted payback"),
     }
     if let Some(mean) = option.mean_time {

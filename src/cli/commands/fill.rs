@@ -58,7 +58,8 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
             }
             Err(error) => {
                 render::problems(terminal, &file_name(book), error.problems());
-                ended = worse(ended, if error.is_about_files() { Outcome::CouldNotRun } else { Outcome::Wrong });
+                ended =
+                    worse(ended, if error.is_about_files() { Outcome::CouldNotRun } else { Outcome::Wrong });
                 books.push(FilledBook::failed(shown, error.problems()));
             }
         }
@@ -83,7 +84,9 @@ pub fn file_name(path: &Path) -> String {
 /// `A=B` in two.
 fn pair(text: &str, flag: &str, shape: &str) -> Result<(String, String), Failure> {
     match text.split_once('=') {
-        Some((a, b)) if !a.trim().is_empty() && !b.trim().is_empty() => Ok((a.trim().into(), b.trim().into())),
+        Some((a, b)) if !a.trim().is_empty() && !b.trim().is_empty() => {
+            Ok((a.trim().into(), b.trim().into()))
+        }
         _ => Err(Failure::Message(format!("{flag} {text}: expected {shape}"))),
     }
 }

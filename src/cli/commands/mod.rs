@@ -15,7 +15,8 @@ use crate::Failure;
 
 /// The schedules in force: the user's folder first, then the built-in ones.
 pub fn catalogue(folder: &Option<PathBuf>) -> Result<Catalogue, Failure> {
-    hence_workbook::schedules::catalogue(folder.as_deref()).map_err(|error| Failure::Message(error.to_string()))
+    hence_workbook::schedules::catalogue(folder.as_deref())
+        .map_err(|error| Failure::Message(error.to_string()))
 }
 
 /// A library error about something typed on the command line, with the character it points at.

@@ -26,7 +26,9 @@ pub fn run(args: &Names, terminal: &Terminal) -> Result<Outcome, Failure> {
         let found: Vec<_> = report
             .found
             .iter()
-            .map(|f| serde_json::json!({"name": f.name, "role": f.role, "place": f.place, "option": f.option}))
+            .map(
+                |f| serde_json::json!({"name": f.name, "role": f.role, "place": f.place, "option": f.option}),
+            )
             .collect();
         let guesses: Vec<_> = report
             .guesses
@@ -44,7 +46,12 @@ pub fn run(args: &Names, terminal: &Terminal) -> Result<Outcome, Failure> {
     if !report.found.is_empty() {
         let mut rows = vec![["Name", "Role", "Place", "Option"].map(String::from).to_vec()];
         for f in &report.found {
-            rows.push(vec![f.name.clone(), f.role.clone(), f.place.clone(), f.option.clone().unwrap_or_default()]);
+            rows.push(vec![
+                f.name.clone(),
+                f.role.clone(),
+                f.place.clone(),
+                f.option.clone().unwrap_or_default(),
+            ]);
         }
         text.push_str(&left_table(&rows));
     }
@@ -55,7 +62,10 @@ pub fn run(args: &Names, terminal: &Terminal) -> Result<Outcome, Failure> {
         text.push_str(&format!("missing: {missing}\n"));
     }
     if let Some(out) = &args.out {
-        text.push_str(&format!("{}: a copy with the guessed names; look them over before filling it\n", out.display()));
+        text.push_str(&format!(
+            "{}: a copy with the guessed names; look them over before filling it\n",
+            out.display()
+        ));
     }
     terminal::print(&escape(&text))?;
     Ok(Outcome::Done)

@@ -61,7 +61,11 @@ fn json(schedule: &Schedule) -> serde_json::Value {
 fn list(schedules: &[&Schedule]) -> String {
     let mut rows = vec![vec!["Id".to_owned(), "Status".to_owned(), "Source".to_owned()]];
     for s in schedules {
-        rows.push(vec![s.id().to_owned(), s.status().to_string(), format!("{}, {}, {}", s.body(), s.title(), s.year())]);
+        rows.push(vec![
+            s.id().to_owned(),
+            s.status().to_string(),
+            format!("{}, {}, {}", s.body(), s.title(), s.year()),
+        ]);
     }
     let width = |c: usize| rows.iter().map(|r| r[c].chars().count()).max().unwrap_or(0);
     let (first, second) = (width(0), width(1));
