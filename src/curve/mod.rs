@@ -45,3 +45,10 @@ impl Curve {
         Vec::new()
     }
 }
+
+impl Spec {
+    /// Not yet.
+    pub fn curve(&self, _at: &crate::Where) -> Result<Curve> {
+        Err(crate::Error::new(crate::ErrorKind::Unsupported, "basis", "curves are not computed yet"))
+    }
+}
