@@ -115,6 +115,7 @@ pub(crate) fn timing_clauses(positions: Positions) -> String {
 }
 
 /// An error on its way out, with the decimal comma that caused it.
+#[derive(Debug)]
 pub(crate) struct Fault {
     pub error: Error,
     comma: Option<usize>,
