@@ -62,7 +62,8 @@ fn ids_in_any_case_with_timing_after_them() {
     assert_eq!(parse("uk-2003").unwrap().timing(), None);
     let error = parse("uk-2003; exact").unwrap_err();
     assert_eq!((error.code(), error.at()), ("syntax", Some(9)));
-    assert_eq!(parse(" uk-2003 flows middle").unwrap_err().at(), Some(1));
+    let error = parse(" uk-2003 flows middle").unwrap_err();
+    assert_eq!((error.at(), error.hint()), (Some(8), Some("`uk-2003; flows middle`")));
 }
 
 #[test]

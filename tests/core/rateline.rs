@@ -1,7 +1,7 @@
 //! The rate line against its specification: the design's examples, errors that point, and print-then-parse.
 //!
 //! The case files hold the examples of the grammar's specification and its rules, worked by hand.
-use hence_core::{Band, Compounding, Edge, HorizonRule, Position, RateLine, Spec, percent};
+use hence_core::{Band, Compounding, Edge, HorizonRule, Position, RateLine, Spec, Where, percent};
 use proptest::prelude::*;
 
 /// The cases of a file: lines that are neither empty nor a comment, cut at " | ".
@@ -182,6 +182,11 @@ fn random_texts_never_panic_and_what_parses_round_trips() {
         match RateLine::parse(&text) {
             Ok(line) => {
                 parsed += 1;
+                // The curve may be refused, for a parameter out of its range, but it never panics.
+                let at = Where { base_year: Some(2026), length: Some(60.0) };
+                if let Ok(curve) = line.spec().curve(&at) {
+                    let _ = curve.factor(25.0);
+                }
                 assert_eq!(RateLine::parse(&line.to_string()), Ok(line), "{text}");
             }
             Err(error) => {

@@ -160,6 +160,7 @@ fn tables_and_growth_by_year() {
         ("", "give exactly one of `line`, `table` and `growth_by_year`"),
         ("table = []", "table: the first pair must be [0, 1]"),
         ("table = [[0, 0.9]]", "table: the first pair must be [0, 1]"),
+        ("table = [[0, 1]]", "table: there must be a second pair"),
         ("table = [[0, 1], [5, 0.9], [5, 0.8]]", "table: pair 3 is [5, 0.8]"),
         ("table = [[0, 1], [5, 0]]", "table: pair 2 is [5, 0]"),
         ("table = [[0, 1], [nan, 0.5]]", "table: pair 2"),
