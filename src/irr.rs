@@ -22,7 +22,7 @@ pub struct IrrSearch {
 /// **Formula**: the rates r with sum of flow_i (1+r)^-t_i = 0.
 ///
 /// **Arguments**: `offsets`, t_i in years, whole or not, any order, repeats allowed; `flows`, net flows, as many;
-/// `interval`, the lowest and the highest rate of interest, both included and above -1, [`IRR_INTERVAL`] as a
+/// `interval`, the lowest and the highest rate of interest, both included (to 1e-13) and above -1, [`IRR_INTERVAL`] as a
 /// rule.
 ///
 /// **Returns**: the rates, rising; an empty list says there is none in the interval, unless `unresolved` says that
@@ -76,8 +76,7 @@ pub fn internal_rates(offsets: &[f64], flows: &[f64], interval: (f64, f64)) -> R
     let (brackets, unresolved) = stream.isolate(first, last, changes == 1);
     for (a, b) in brackets {
         let rate = stream.bisect(a, b) - 1.0;
-        // A root at an end of the interval may come out a rounding beside it.
-        let slack = 4.0 * f64::EPSILON * (1.0 + rate);
+        let slack = AT_AN_END * (1.0 + rate);
         if rate >= low - slack && rate <= high + slack {
             found.rates.push(rate.clamp(low, high));
         }
@@ -106,6 +105,9 @@ struct Signed {
 
 /// Pieces between two values of q: with one root each, and not settled.
 type Isolated = (Vec<(Signed, Signed)>, Vec<(f64, f64)>);
+
+/// So near to an end of the interval, relative to 1 + r, a root counts as lying on it: the flows are rounded, too.
+const AT_AN_END: f64 = 1e-13;
 
 /// Terms of the Taylor expansion, the remainder being of this order.
 const ORDER: usize = 8;
@@ -166,9 +168,9 @@ impl Stream {
         (value.abs() > error).then_some(Signed { q, positive: value > 0.0 })
     }
 
-    /// An end of the search, moved outwards a little where a root lies on it.
+    /// An end of the search, a little outside the interval so that a root on its end is seen.
     fn end(&self, q: f64, outwards: f64) -> Option<Signed> {
-        let steps = std::iter::once(0.0).chain((0..30).map(|k| 1e-14 * 2f64.powi(k)));
+        let steps = (0..30).map(|k| AT_AN_END * 2f64.powi(k));
         steps.map(|step| q * (1.0 + outwards * step)).find_map(|q| self.sign(q))
     }
 

@@ -1,5 +1,6 @@
 //! x
 
 mod calendar;
+mod irr;
 mod prices;
 mod timing;
