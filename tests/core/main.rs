@@ -2,5 +2,7 @@
 
 mod calendar;
 mod irr;
+mod measures;
 mod prices;
+mod tails;
 mod timing;
