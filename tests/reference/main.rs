@@ -1,1 +1,3 @@
-//! x
+//! Published tables and worked examples, row by row; every file of values names its source.
+
+mod npv;
