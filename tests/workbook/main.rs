@@ -1,3 +1,4 @@
 //! x
 
+mod hostile;
 mod package;
