@@ -5,7 +5,10 @@
 
 pub mod appraisal;
 pub mod outcome;
+pub mod package;
 pub mod patch;
+pub mod preflight;
 pub mod problem;
 pub mod references;
 pub mod sheets;
+pub mod xml;

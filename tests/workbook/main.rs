@@ -1,1 +1,4 @@
 //! x
+
+mod hostile;
+mod package;
