@@ -8,4 +8,5 @@ pub mod outcome;
 pub mod patch;
 pub mod problem;
 pub mod references;
+pub mod roles;
 pub mod sheets;
