@@ -5,8 +5,11 @@
 
 pub mod appraisal;
 pub mod outcome;
+pub mod package;
 pub mod patch;
+pub mod preflight;
 pub mod problem;
 pub mod references;
 pub mod roles;
 pub mod sheets;
+pub mod xml;

@@ -1,1 +1,3 @@
 //! x
+
+mod package;
