@@ -1,1 +1,5 @@
 //! x
+
+mod calendar;
+mod prices;
+mod timing;
