@@ -63,18 +63,14 @@ pub struct Grid {
 impl Grid {
     /// Every cell with its position, row by row.
     pub fn iter(&self) -> impl Iterator<Item = (Cell, &ReadCell)> {
-        let Range { first, last } = self.at.range;
-        let width = last.col - first.col + 1;
-        self.cells.iter().enumerate().map(move |(i, cell)| {
-            (Cell { row: first.row + i as u32 / width, col: first.col + i as u32 % width }, cell)
-        })
+        self.at.range.cells().zip(&self.cells)
     }
 
     /// The cell at a position of the sheet, where it lies in the range.
     pub fn get(&self, cell: Cell) -> Option<&ReadCell> {
-        let Range { first, last } = self.at.range;
-        let inside = (first.row..=last.row).contains(&cell.row) && (first.col..=last.col).contains(&cell.col);
-        let width = (last.col - first.col + 1) as usize;
+        let Range { first, .. } = self.at.range;
+        let width = self.at.range.cols() as usize;
+        let inside = self.at.range.contains(cell);
         inside.then(|| &self.cells[(cell.row - first.row) as usize * width + (cell.col - first.col) as usize])
     }
 }
@@ -92,7 +88,6 @@ pub struct Sheets<'a> {
 struct Loaded {
     ranges: Vec<Range>,
     cells: BTreeMap<Cell, ReadCell>,
-    arrays: Vec<Range>,
 }
 
 impl<'a> Sheets<'a> {
@@ -111,8 +106,7 @@ impl<'a> Sheets<'a> {
     pub fn load(&mut self, ranges: &[SheetRange]) -> Result<()> {
         let mut wanted: BTreeMap<&str, Vec<Range>> = BTreeMap::new();
         for range in ranges {
-            let size = u64::from(range.range.last.row - range.range.first.row + 1)
-                * u64::from(range.range.last.col - range.range.first.col + 1);
+            let size = range.range.len();
             if size > MAX_CELLS {
                 return Err(Problem::error(
                     "range-too-large",
@@ -139,17 +133,12 @@ impl<'a> Sheets<'a> {
     pub fn range(&mut self, at: &SheetRange) -> Result<Grid> {
         self.load(std::slice::from_ref(at))?;
         let read = self.read.entry(at.sheet.clone()).or_default();
-        let Range { first, last } = at.range;
-        let cells = (first.row..=last.row)
-            .flat_map(|row| (first.col..=last.col).map(move |col| Cell { row, col }))
+        let cells = at
+            .range
+            .cells()
             .map(|cell| read.cells.get(&cell).cloned().unwrap_or_default())
             .collect();
         Ok(Grid { at: at.clone(), cells })
-    }
-
-    /// The array formulas and data tables of a sheet; known once a range of it was read.
-    pub fn arrays(&self, sheet: &str) -> &[Range] {
-        self.read.get(sheet).map_or(&[], |read| &read.arrays)
     }
 
     /// Streams every stored value of a sheet past `see`, keeping none.
@@ -173,8 +162,8 @@ impl<'a> Sheets<'a> {
         let Some(part) = self.parts.get(sheet) else {
             return Err(Problem::error("missing-sheet", place, "the workbook has no sheet of this name").into());
         };
-        let wanted = |cell: Cell| ranges.iter().any(|range| holds(range, &Range { first: cell, last: cell }));
-        let xml = self.package.read(part)?;
+        let wanted = |cell: Cell| ranges.iter().any(|range| range.contains(cell));
+        let xml = self.package.part(part)?.unwrap_or_default();
         let found = scan::scan(part, &xml, wanted)?;
         drop(xml);
         let mut reader = self.values.worksheet_cells_reader(sheet).map_err(|e| unreadable(place.clone(), &e))?;
@@ -200,17 +189,13 @@ impl<'a> Sheets<'a> {
                 Err(stored) => odd.push(odd_value(sheet, at, &stored)),
             }
         }
-        read.arrays = found.arrays;
         read.ranges.extend(ranges);
         if odd.is_empty() { Ok(()) } else { Err(odd.into()) }
     }
 }
 
 fn holds(outer: &Range, inner: &Range) -> bool {
-    outer.first.row <= inner.first.row
-        && outer.first.col <= inner.first.col
-        && inner.last.row <= outer.last.row
-        && inner.last.col <= outer.last.col
+    outer.contains(inner.first) && outer.contains(inner.last)
 }
 
 fn value_of(data: &DataRef) -> Value {
@@ -255,7 +240,8 @@ fn formula_text(found: &Scan, at: Cell, raw: &scan::Raw) -> Option<String> {
         RawFormula::Text(text) => Some(text.clone()),
         RawFormula::Shared(group) => {
             let (from, text) = found.masters.get(group)?;
-            Some(shift(text, *from, at))
+            let by = |to: u32, from: u32| i64::from(to) - i64::from(from);
+            Some(shift(text, by(at.row, from.row), by(at.col, from.col)))
         }
     }
 }
@@ -264,7 +250,7 @@ fn odd_value(sheet: &str, at: Cell, stored: &str) -> Problem {
     let shown: String = stored.chars().take(40).collect();
     Problem::error(
         "odd-value",
-        Place::cells(sheet, Range { first: at, last: at }),
+        Place::cells(sheet, Range::cell(at)),
         format!("the file stores `{shown}` here, which cannot be read exactly as a value"),
     )
     .hint("open the workbook in a spreadsheet program and save it again")

@@ -6,7 +6,7 @@ use crate::reading::{Grid, ReadCell, Value};
 use crate::references::{Cell, Range, SheetRange};
 use crate::roles::{Role, key};
 
-use super::Context;
+use super::{Context, note};
 use super::cells::{number, one};
 use super::counted::sum_of;
 use super::find::Named;
@@ -32,15 +32,15 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
         let Some(name) = label(context, named, &line) else { continue };
         let place = Place::cells(&named.at.sheet, line.at).called(&name);
         if line.cells.iter().all(|(_, cell)| cell.value == Value::Blank && cell.formula.is_none()) {
-            context.report(Problem::note("block-heading", place, "has no numbers and is taken for a heading"));
+            context.report(note("block-heading", place, "has no numbers and is taken for a heading"));
             continue;
         }
         if is_years(&line, axis) {
-            context.report(Problem::note("block-years", place, "repeats the years and is left out"));
+            context.report(note("block-years", place, "repeats the years and is left out"));
             continue;
         }
         if is_subtotal(&line, named, axis.direction) {
-            context.report(Problem::note(
+            context.report(note(
                 "subtotal-left-out",
                 place,
                 "is made of other rows of the block by its formulas, and is left out so that nothing counts twice",

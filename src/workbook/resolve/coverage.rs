@@ -2,14 +2,14 @@
 
 use std::collections::BTreeMap;
 
-use hence_core::ExactSum;
+use hence_core::sum;
 
 use crate::appraisal::{Choice, Covered, Direction, StreamKind, TargetRole};
-use crate::problem::{Place, Problem};
+use crate::problem::Place;
 use crate::reading::Value;
 use crate::references::{Cell, Range, SheetRange};
 
-use super::Context;
+use super::{Context, note};
 use super::choices::Built;
 use super::counted::aligned;
 
@@ -34,8 +34,7 @@ struct Band {
 struct Line {
     heading: String,
     heading_is_word: bool,
-    numbers: u32,
-    total: ExactSum,
+    numbers: Vec<f64>,
 }
 
 /// Every numeric row along the years of every option, in sheet order.
@@ -58,14 +57,14 @@ pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
                 let at = SheetRange { sheet: sheet.clone(), range: band.line(index) };
                 let roles = roles.get(&at).cloned().unwrap_or_default();
                 let after_years = band.years.is_none_or(|years| index > years);
-                let wanted = !roles.is_empty() || line.numbers >= 2 || (line.numbers == 1 && after_years);
+                let wanted = !roles.is_empty() || line.numbers.len() > usize::from(!after_years);
                 (wanted && Some(index) != band.years)
-                    .then(|| Covered { at, heading: line.heading, roles, total: line.total.value() })
+                    .then(|| Covered { at, heading: line.heading, roles, total: sum(&line.numbers) })
             }));
         }
     }
     if covered.len() > MAX_ROWS_LISTED {
-        context.report(Problem::note(
+        context.report(note(
             "coverage-cut",
             Place::default(),
             format!("{} numeric rows run along the years; the first {MAX_ROWS_LISTED} are listed", covered.len()),
@@ -137,8 +136,7 @@ fn lines(context: &mut Context, sheet: &str, band: Band) -> crate::problem::Resu
         match value {
             Value::Number(number) if number.is_finite() && (band.first..=band.last).contains(&across) => {
                 let line = lines.entry(index).or_default();
-                line.numbers += 1;
-                line.total.add(number);
+                line.numbers.push(number);
             }
             Value::Text(text) if across < band.first => {
                 let line = lines.entry(index).or_default();
@@ -152,7 +150,7 @@ fn lines(context: &mut Context, sheet: &str, band: Band) -> crate::problem::Resu
             _ => {}
         }
     })?;
-    lines.retain(|_, line| line.numbers > 0);
+    lines.retain(|_, line| !line.numbers.is_empty());
     Ok(lines)
 }
 

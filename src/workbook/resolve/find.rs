@@ -198,10 +198,12 @@ pub(super) fn cells(context: &Context, defined: &DefinedName) -> Result<SheetRan
 }
 
 /// A name on exactly one merged area means its upper left cell, the only one that holds anything.
-fn shrink_to_merged(context: &Context, named: &mut Named) {
-    let sheet = context.book.sheets.iter().find(|sheet| sheet.name == named.at.sheet);
+fn shrink_to_merged(context: &mut Context, named: &mut Named) {
     let several = matches!(named.name.role, Role::Budget | Role::Shared | Role::Costs | Role::Benefits);
-    if !several && sheet.is_some_and(|sheet| sheet.facts.merged.contains(&named.at.range)) {
+    if several || named.at.range.is_single() {
+        return;
+    }
+    if context.facts(&named.at.sheet).is_some_and(|facts| facts.merged.contains(&named.at.range)) {
         named.at.range.last = named.at.range.first;
     }
 }

@@ -117,25 +117,22 @@ fn name_after_sheet(context: &Context, group: &mut Group) {
 
 /// Options come in the order of their sheets, then of their cells.
 fn first_cell(context: &Context, named: &[Named]) -> Option<(usize, Cell)> {
-    let places = |streams_only: bool| {
-        named.iter().filter(move |named| !streams_only || named.name.role.is_stream()).filter_map(|named| {
-            let sheet = context.book.sheets.iter().position(|sheet| sheet.name == named.at.sheet)?;
-            Some((sheet, named.at.range.first))
-        })
+    let first = |streams: bool| {
+        let wanted = named.iter().filter(|named| !streams || named.name.role.is_stream());
+        wanted
+            .filter_map(|named| Some((context.book.sheet_index(&named.at.sheet)?, named.at.range.first)))
+            .min()
     };
-    places(true).min().or_else(|| places(false).min())
+    first(true).or_else(|| first(false))
 }
 
 /// Without options, the one there is bears the name of the sheet its streams stand on.
 fn only_name(context: &Context, shared: &[Named]) -> String {
-    let by = |test: &dyn Fn(Role) -> bool| {
-        shared.iter().filter(|named| test(named.name.role)).filter_map(|named| {
-            let sheet = context.book.sheets.iter().position(|sheet| sheet.name == named.at.sheet)?;
-            Some((sheet, named.at.range.first, named.at.sheet.clone()))
-        })
+    let first = |streams: bool| {
+        let wanted = shared.iter().filter(|named| !streams || named.name.role.is_stream());
+        wanted.filter_map(|named| Some((context.book.sheet_index(&named.at.sheet)?, &named.at))).min()
     };
-    let stream = by(&|role| role.is_stream()).min();
-    let any = stream.or_else(|| by(&|_| true).min()).map(|(_, _, sheet)| sheet);
+    let any = first(true).or_else(|| first(false)).map(|(_, at)| at.sheet.clone());
     any.or_else(|| context.book.sheets.first().map(|sheet| sheet.name.clone())).unwrap_or_default()
 }
 

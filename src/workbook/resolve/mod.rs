@@ -14,12 +14,12 @@ mod targets;
 mod texts;
 mod years;
 
-use std::collections::BTreeSet;
+use std::collections::{BTreeMap, BTreeSet};
 
 use crate::appraisal::Appraisal;
-use crate::model::Workbook;
+use crate::model::{SheetFacts, Workbook};
 use crate::package::Package;
-use crate::problem::{Problem, Result, Severity, WorkbookError};
+use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
 use crate::reading::{Grid, Sheets};
 use crate::references::{Range, SheetRange};
 
@@ -46,9 +46,9 @@ pub struct Options<'a> {
 ///
 /// # Errors
 /// Every problem that was found, in sheet order, warnings too, where at least one keeps the workbook from
-/// being filled. The codes are those of [`CODES`].
+/// being filled.
 pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<Appraisal> {
-    let mut context = Context { book, sheets: Sheets::open(package, book)?, problems: Vec::new() };
+    let mut context = Context::open(package, book)?;
     let named = find::find(&mut context, options.roles);
     let ranges: Vec<SheetRange> =
         named.iter().filter(|named| !named.too_large()).map(|named| named.at.clone()).collect();
@@ -72,12 +72,42 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
 
 /// What every step needs: the workbook, its cells, and the list of what was found wrong.
 struct Context<'a> {
+    package: &'a Package,
     book: &'a Workbook,
     sheets: Sheets<'a>,
+    facts: BTreeMap<String, SheetFacts>,
     problems: Vec<Problem>,
 }
 
-impl Context<'_> {
+impl<'a> Context<'a> {
+    /// The workbook with nothing reported yet but what is wrong with its names for hence.
+    fn open(package: &'a Package, book: &'a Workbook) -> Result<Self> {
+        let sheets = Sheets::open(package, book)?;
+        let ours = |problem: &&Problem| {
+            let name = problem.place.name.as_deref().unwrap_or_default();
+            crate::roles::parse_name(name).is_some()
+        };
+        let problems = book.problems.iter().filter(ours).cloned().collect();
+        Ok(Context { package, book, sheets, facts: BTreeMap::new(), problems })
+    }
+
+    /// What a sheet holds besides values; nothing where it cannot be read, which is reported.
+    fn facts(&mut self, sheet: &str) -> Option<SheetFacts> {
+        if let Some(facts) = self.facts.get(sheet) {
+            return Some(facts.clone());
+        }
+        match self.book.facts(self.package, self.book.sheet_index(sheet)?) {
+            Ok(facts) => {
+                self.facts.insert(sheet.to_owned(), facts.clone());
+                Some(facts)
+            }
+            Err(error) => {
+                self.problems.extend(error.problems().iter().cloned());
+                None
+            }
+        }
+    }
+
     fn report(&mut self, problem: Problem) {
         self.problems.push(problem);
     }
@@ -116,6 +146,11 @@ impl Context<'_> {
         problems.retain(|problem| seen.insert(format!("{problem} {:?}", problem.hint)));
         merge_neighbours(problems)
     }
+}
+
+/// Something worth knowing that changes nothing.
+fn note(code: &'static str, place: Place, message: impl Into<String>) -> Problem {
+    Problem { severity: Severity::Note, ..Problem::error(code, place, message) }
 }
 
 /// Joins problems that differ only in their cells, where the cells lie beside each other.

@@ -3,7 +3,6 @@
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::problem::{Place, Problem, Result};
-use crate::reading::Sheets;
 use crate::roles::{self, Role, Way};
 
 use super::{Context, find, groups};
@@ -73,12 +72,4 @@ pub fn names(package: &Package, book: &Workbook) -> Result<NamesReport> {
 fn found(named: &find::Named, option: Option<String>) -> Found {
     let place = Place::cells(&named.at.sheet, named.at.range);
     Found { name: named.from.clone(), role: named.name.words(), place, option }
-}
-
-impl<'a> Context<'a> {
-    /// The workbook with nothing reported yet.
-    pub(super) fn open(package: &'a Package, book: &'a Workbook) -> Result<Self> {
-        let sheets = Sheets::open(package, book)?;
-        Ok(Context { package, book, sheets, facts: Default::default(), problems: Vec::new() })
-    }
 }

@@ -13,7 +13,7 @@ use super::find::Named;
 use super::groups::{Group, Split};
 use super::settings::{self, Signs};
 use super::years::direction;
-use super::{Context, blocks};
+use super::{Context, blocks, note};
 
 /// The streams of an option, its own first, then the shared ones.
 pub(super) fn streams(context: &mut Context, split: &Split, group: &Group, axis: &Axis) -> Vec<Stream> {
@@ -90,7 +90,7 @@ fn row(context: &mut Context, named: &Named, axis: &Axis) -> Option<Vec<f64>> {
         );
     } else {
         for cell in read.blanks {
-            context.report(Problem::note("blank-zero", place(&named.at, cell, &named.from), "is blank and counts as 0"));
+            context.report(note("blank-zero", place(&named.at, cell, &named.from), "is blank and counts as 0"));
         }
     }
     Some(read.values)
@@ -129,9 +129,8 @@ fn beside_years(at: &SheetRange, axis: &Axis) -> SheetRange {
 
 /// Only the first cell of a merged area holds anything; the others would count as 0 unnoticed.
 fn check_merged(context: &mut Context, named: &Named) {
-    let book = context.book;
-    let Some(sheet) = book.sheets.iter().find(|sheet| sheet.name == named.at.sheet) else { return };
-    for merged in sheet.facts.merged.iter().filter(|merged| merged.intersects(&named.at.range)) {
+    let Some(facts) = context.facts(&named.at.sheet) else { return };
+    for merged in facts.merged.iter().filter(|merged| merged.intersects(&named.at.range)) {
         context.report(
             Problem::error(
                 "merged",
