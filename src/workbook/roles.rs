@@ -278,9 +278,11 @@ impl fmt::Display for RoleName {
 /// What every name of hence begins with.
 pub const PREFIX: &str = "hence_";
 
-/// A key under which two names of streams or options are the same: case and underscores do not matter.
+/// A key under which two names of streams, options or sheets are the same: only letters and digits matter,
+/// not their case nor what stands between words.
 pub fn key(name: &str) -> String {
-    name.replace('_', " ").split_whitespace().collect::<Vec<_>>().join(" ").to_lowercase()
+    let words = name.split(|c: char| !c.is_alphanumeric()).filter(|word| !word.is_empty());
+    words.collect::<Vec<_>>().join(" ").to_lowercase()
 }
 
 /// Reads a defined name.
@@ -322,6 +324,7 @@ fn parse_rest(rest: &str) -> Result<RoleName, String> {
     // The longest word that fits wins, so that `pv_costs` is not the present value of a stream `costs`.
     let mut infos: Vec<&RoleInfo> = ROLES.iter().collect();
     infos.sort_by_key(|info| std::cmp::Reverse(info.word.len()));
+    let mut slip = None;
     for info in infos {
         let Some(after) = lower.strip_prefix(info.word) else { continue };
         if after.is_empty() {
@@ -341,11 +344,13 @@ fn parse_rest(rest: &str) -> Result<RoleName, String> {
             return Err(format!("{PREFIX}{body} ends where the name of a stream should follow"));
         }
         if info.takes == Takes::NoStream {
-            return Err(slip::unwanted_stream(info, stream));
+            // A shorter word may still fit: `pv_costs_of_delay` is the present value of a stream.
+            slip = slip.or_else(|| Some(slip::unwanted_stream(info, stream)));
+            continue;
         }
         return Ok(RoleName { role: info.role, stream: Some(spaced(stream)), option });
     }
-    Err(slip::unknown(body))
+    Err(slip.unwrap_or_else(|| slip::unknown(body)))
 }
 
 /// Splits at the first double underscore or dot.

@@ -1,3 +1,6 @@
 //! x
 
 mod package;
+mod resolve;
+mod roles;
+mod small;

@@ -2,7 +2,7 @@
 
 use crate::problem::{Place, Problem};
 use crate::reading::Value;
-use crate::references::{Cell, SheetRange};
+use crate::references::Cell;
 
 use super::cells::{error_value, one, single};
 use super::find::Named;
@@ -65,9 +65,4 @@ pub(super) fn list(context: &mut Context, named: &Named) -> Vec<(String, Cell)> 
         }
     }
     names
-}
-
-/// The range of one cell on a sheet.
-pub(super) fn cell_of(at: &SheetRange, cell: Cell) -> SheetRange {
-    SheetRange { sheet: at.sheet.clone(), range: one(cell) }
 }
