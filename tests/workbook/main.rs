@@ -2,3 +2,6 @@
 
 mod hostile;
 mod package;
+mod resolve;
+mod roles;
+mod small;
