@@ -5,6 +5,7 @@
 
 pub mod appraisal;
 pub mod model;
+pub mod names_edit;
 pub mod outcome;
 pub mod package;
 pub mod patch;
@@ -12,4 +13,5 @@ pub mod preflight;
 pub mod problem;
 pub mod references;
 pub mod sheets;
+pub mod stale;
 pub mod xml;
