@@ -1,14 +1,16 @@
 //! Edits of the workbook part: sheets and names put in or taken out, full calculation on load, all else
 //! left byte for byte.
 
+mod outline;
+
 use std::collections::BTreeMap;
 use std::fmt::Write;
 use std::ops::Range;
 
-use quick_xml::events::{BytesStart, Event};
+use outline::{Outline, SheetTag, Tag};
 
-use crate::problem::{Place, Problem, Result};
-use crate::xml::{Scanner, attribute, bad_xml, escape_attribute, escape_text};
+use crate::problem::{Place, Problem, Result, WorkbookError};
+use crate::xml::{escape_attribute, escape_text};
 
 /// The namespace of relationship ids.
 const RELATIONSHIPS: &str = "http://schemas.openxmlformats.org/officeDocument/2006/relationships";
@@ -123,163 +125,7 @@ impl Splices<'_> {
     }
 }
 
-/// An element: where its tags and its attributes are.
-#[derive(Clone, Debug, Default)]
-struct Tag {
-    /// The start tag.
-    open: Range<usize>,
-    /// From the start tag to the end tag.
-    whole: Range<usize>,
-    /// It has no end tag.
-    empty: bool,
-    /// Where the names and the values of its attributes stand.
-    attributes: Vec<(Range<usize>, Range<usize>)>,
-}
-
-/// A `<sheet>`.
-struct SheetTag {
-    tag: Tag,
-    name: String,
-    rel_id: String,
-    id: u32,
-}
-
-/// A `<definedName>`.
-struct NameTag {
-    tag: Tag,
-    name: String,
-    scope: Option<usize>,
-}
-
-/// Where things stand in a workbook part.
-#[derive(Default)]
-struct Outline {
-    /// The prefix of its elements, with the colon.
-    prefix: String,
-    /// The prefix of relationship ids in scope where sheets are listed.
-    rel_prefix: Option<String>,
-    sheets_list: Tag,
-    sheets: Vec<SheetTag>,
-    names_list: Option<Tag>,
-    names: Vec<NameTag>,
-    /// Where a list of names would go.
-    names_place: usize,
-    calculation: Option<Tag>,
-    /// The `<workbookView>`s, with their first and active tabs.
-    views: Vec<(Tag, Option<usize>, Option<usize>)>,
-}
-
-const PART: &str = "the workbook part";
-
 impl Outline {
-    fn read(xml: &[u8]) -> Result<Outline> {
-        let mut book = Outline::default();
-        let mut scanner = Scanner::new(PART, xml)?;
-        let mut section: Vec<u8> = Vec::new();
-        let mut open: Option<Tag> = None;
-        while let Some(token) = scanner.next()? {
-            match &token.event {
-                Event::Start(start) | Event::Empty(start) => {
-                    let empty = matches!(token.event, Event::Empty(_));
-                    let depth = scanner.depth() + usize::from(empty);
-                    if depth > 3 {
-                        continue;
-                    }
-                    let tag = Tag::read(xml, start, token.span, empty)?;
-                    let local = start.local_name();
-                    match depth {
-                        1 => {
-                            let name = start.name();
-                            let prefix = name.as_ref().len() - local.as_ref().len();
-                            book.prefix = String::from_utf8_lossy(&name.as_ref()[..prefix]).into_owned();
-                            book.see_prefixes(start)?;
-                        }
-                        2 => {
-                            section = local.as_ref().to_vec();
-                            if section == b"sheets" {
-                                book.see_prefixes(start)?;
-                            }
-                            if empty {
-                                book.close_section(&section, tag);
-                            } else {
-                                open = Some(tag);
-                            }
-                        }
-                        _ => book.see_item(&section, local.as_ref(), start, tag)?,
-                    }
-                }
-                Event::End(_) if scanner.depth() == 1 => {
-                    if let Some(mut tag) = open.take() {
-                        tag.whole.end = token.span.end;
-                        book.close_section(&section, tag);
-                    }
-                }
-                Event::End(_) if scanner.depth() == 2 && section == b"definedNames" => {
-                    if let Some(name) = book.names.last_mut() {
-                        name.tag.whole.end = token.span.end;
-                    }
-                }
-                Event::End(_) if scanner.depth() == 2 && section == b"sheets" => {
-                    if let Some(sheet) = book.sheets.last_mut() {
-                        sheet.tag.whole.end = token.span.end;
-                    }
-                }
-                _ => {}
-            }
-        }
-        if book.sheets.is_empty() {
-            return Err(no_sheets());
-        }
-        Ok(book)
-    }
-
-    /// Notes a prefix bound to relationship ids.
-    fn see_prefixes(&mut self, start: &BytesStart<'_>) -> Result<()> {
-        for found in start.attributes().with_checks(false).flatten() {
-            if let Some(prefix) = found.key.as_ref().strip_prefix(b"xmlns:")
-                && found.value.as_ref() == RELATIONSHIPS.as_bytes()
-            {
-                self.rel_prefix = Some(String::from_utf8_lossy(prefix).into_owned());
-            }
-        }
-        Ok(())
-    }
-
-    fn close_section(&mut self, section: &[u8], tag: Tag) {
-        match section {
-            b"sheets" => {
-                self.names_place = tag.whole.end;
-                self.sheets_list = tag;
-            }
-            b"functionGroups" | b"externalReferences" => self.names_place = tag.whole.end,
-            b"definedNames" => self.names_list = Some(tag),
-            b"calcPr" => self.calculation = Some(tag),
-            _ => {}
-        }
-    }
-
-    fn see_item(&mut self, section: &[u8], local: &[u8], start: &BytesStart<'_>, tag: Tag) -> Result<()> {
-        let number = |name| -> Result<Option<usize>> {
-            Ok(attribute(PART, start, name)?.and_then(|text| text.trim().parse().ok()))
-        };
-        let text = |name| -> Result<String> { Ok(attribute(PART, start, name)?.unwrap_or_default()) };
-        match (section, local) {
-            (b"sheets", b"sheet") => {
-                let id = number("sheetId")?.and_then(|id| id.try_into().ok()).unwrap_or(0);
-                self.sheets.push(SheetTag { tag, name: text("name")?, rel_id: text("id")?, id });
-            }
-            (b"definedNames", b"definedName") => {
-                let scope = number("localSheetId")?;
-                self.names.push(NameTag { tag, name: text("name")?, scope });
-            }
-            (b"bookViews", b"workbookView") => {
-                self.views.push((tag, number("firstSheet")?, number("activeTab")?))
-            }
-            _ => {}
-        }
-        Ok(())
-    }
-
     /// Where each old sheet will stand (none if it goes), and the names of all that will be there.
     fn sheets_after(&self, edit: &BookEdit) -> Result<After> {
         let mut after = After { place: Vec::new(), names: BTreeMap::new() };
@@ -481,27 +327,6 @@ impl After {
     }
 }
 
-impl Tag {
-    fn read(xml: &[u8], start: &BytesStart<'_>, span: Range<usize>, empty: bool) -> Result<Tag> {
-        let mut attributes = Vec::new();
-        for found in start.attributes().with_checks(false) {
-            let found = found.map_err(|e| bad_xml(PART, span.start as u64, &e.to_string()))?;
-            let places = (position(xml, &span, found.key.as_ref()), position(xml, &span, &found.value));
-            if let (Some(key), Some(value)) = places {
-                attributes.push((key, value));
-            }
-        }
-        Ok(Tag { open: span.clone(), whole: span, empty, attributes })
-    }
-}
-
-/// Where a value that the reader borrowed from the text stands in it.
-fn position(xml: &[u8], span: &Range<usize>, value: &[u8]) -> Option<Range<usize>> {
-    let start = (value.as_ptr() as usize).checked_sub(xml.as_ptr() as usize)?;
-    let end = start + value.len();
-    (span.start <= start && end <= span.end).then_some(start..end)
-}
-
-fn no_sheets() -> crate::problem::WorkbookError {
+fn no_sheets() -> WorkbookError {
     Problem::error("no-sheets", Place::default(), "the workbook holds no sheets").into()
 }

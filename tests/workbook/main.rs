@@ -3,5 +3,6 @@
 mod model;
 mod names_edit;
 mod package;
+mod references;
 mod small;
 mod stale;
