@@ -5,6 +5,7 @@
 
 pub mod appraisal;
 pub mod model;
+pub mod names_edit;
 pub mod outcome;
 pub mod package;
 pub mod patch;
@@ -15,4 +16,5 @@ pub mod references;
 pub mod resolve;
 pub mod roles;
 pub mod sheets;
+pub mod stale;
 pub mod xml;

@@ -1,7 +1,12 @@
-//! x
+//! The workbook crate from outside: real, small and hostile workbooks.
 
+mod bare;
 mod hostile;
+mod model;
+mod names_edit;
 mod package;
+mod references;
 mod resolve;
 mod roles;
 mod small;
+mod stale;
