@@ -12,3 +12,5 @@ pub mod problem;
 pub mod references;
 pub mod sheets;
 pub mod xml;
+mod splice;
+pub mod styles;

@@ -1,3 +1,5 @@
 //! x
 
+mod graft;
 mod package;
+mod patch;
