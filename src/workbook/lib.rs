@@ -4,6 +4,7 @@
 //! here is where they are read from, where they go, and the proof that comes with them.
 
 pub mod appraisal;
+pub mod model;
 pub mod outcome;
 pub mod package;
 pub mod patch;
