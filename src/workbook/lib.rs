@@ -4,7 +4,9 @@
 //! here is where they are read from, where they go, and the proof that comes with them.
 
 pub mod appraisal;
+pub mod graft;
 pub mod model;
+pub mod names_edit;
 pub mod outcome;
 pub mod package;
 pub mod patch;
@@ -12,6 +14,7 @@ pub mod preflight;
 pub mod problem;
 pub mod references;
 pub mod sheets;
-pub mod xml;
 mod splice;
 pub mod styles;
+pub mod verify;
+pub mod xml;
