@@ -126,11 +126,13 @@ impl Package {
             return Err(sniff::other_package(self));
         };
         self.types = ContentTypes::read(&types)?;
-        let main = self
-            .relationships("")?
-            .into_iter()
-            .find(|r| !r.external && r.kind.ends_with("/officeDocument"))
-            .ok_or_else(|| not_a_workbook("its main part is not named"))?;
+        let mut links = self.relationships("")?;
+        links.retain(|link| link.kind.ends_with("/officeDocument"));
+        let main = links.pop().filter(|link| !link.external);
+        let main = main.ok_or_else(|| not_a_workbook("its main part is not named"))?;
+        if !links.is_empty() {
+            return Err(not_a_workbook("it names more than one main part"));
+        }
         if !self.has(&main.target) {
             return Err(not_a_workbook(&format!("its main part {} is missing", main.target)));
         }
@@ -159,6 +161,11 @@ impl Package {
     /// backslashes turned into slashes.
     pub fn parts(&self) -> impl Iterator<Item = &str> {
         self.entries.iter().map(|entry| entry.part.as_str()).filter(|name| !name.ends_with('/'))
+    }
+
+    /// The names of all entries of the zip file exactly as stored, folders too.
+    pub fn entry_names(&self) -> impl Iterator<Item = &str> {
+        self.entries.iter().map(|entry| entry.name.as_str())
     }
 
     /// Whether there is a part of that name.

@@ -35,7 +35,7 @@ impl<'a> Scanner<'a> {
     ///
     /// A byte-order mark of UTF-8 is stepped over; spans count it.
     ///
-    /// **Errors**: `bad-utf8`, `utf-16`.
+    /// **Errors**: `bad-utf8`, `encoding`.
     pub fn new(part: &str, xml: &'a [u8]) -> Result<Self> {
         check_encoding(part, xml)?;
         if let Err(at) = std::str::from_utf8(xml) {
@@ -114,6 +114,17 @@ impl Shape {
                     .into());
                 }
             }
+            Event::Decl(declaration) => {
+                // Some readers go by what is declared, so it has to be true.
+                let declared = declaration.encoding().transpose().ok().flatten();
+                let utf8 = |name: &[u8]| {
+                    name.eq_ignore_ascii_case(b"utf-8") || name.eq_ignore_ascii_case(b"us-ascii")
+                };
+                if let Some(name) = declared.filter(|name| !utf8(name)) {
+                    let name: String = String::from_utf8_lossy(&name).chars().take(40).collect();
+                    return Err(wrong_encoding(part, &name).into());
+                }
+            }
             Event::End(_) => self.depth -= 1,
             Event::DocType(_) => {
                 return Err(Problem::error(
@@ -170,15 +181,14 @@ pub(crate) fn bad_utf8(part: &str, at: u64) -> Problem {
 pub(crate) fn check_encoding(part: &str, start: &[u8]) -> Result<()> {
     let wide = [b"\xFF\xFE".as_slice(), b"\xFE\xFF", b"<\0", b"\0<"];
     if wide.iter().any(|mark| start.starts_with(mark)) {
-        return Err(Problem::error(
-            "utf-16",
-            Place::default(),
-            format!("{part} is UTF-16 text; only UTF-8 is read"),
-        )
-        .hint("open the file in a spreadsheet program and save it again")
-        .into());
+        return Err(wrong_encoding(part, "UTF-16").into());
     }
     Ok(())
+}
+
+fn wrong_encoding(part: &str, name: &str) -> Problem {
+    Problem::error("encoding", Place::default(), format!("{part} is {name} text; only UTF-8 is read"))
+        .hint("open the file in a spreadsheet program and save it again")
 }
 
 /// The value of the attribute with that local name (`id` finds `r:id`), unescaped; `part` is for messages.
@@ -283,9 +293,11 @@ mod tests {
         assert_eq!(codes(b"x<a/>"), Err("bad-xml"));
         assert_eq!(codes(b"<a>&who;</a>"), Err("bad-xml"));
         assert_eq!(codes(b"<a>&#0;</a>"), Err("bad-xml"));
+        assert_eq!(codes(b"<?xml version='1.0' encoding='utf-8'?><a/>"), Ok(2));
+        assert_eq!(codes(b"<?xml version='1.0' encoding='ISO-8859-1'?><a/>"), Err("encoding"));
         assert_eq!(codes(b"<!DOCTYPE a><a/>"), Err("doctype"));
         assert_eq!(codes(b"<a>\xFF</a>"), Err("bad-utf8"));
-        assert_eq!(codes(b"\xFF\xFE<\0a\0/\0>\0"), Err("utf-16"));
+        assert_eq!(codes(b"\xFF\xFE<\0a\0/\0>\0"), Err("encoding"));
     }
 
     #[test]

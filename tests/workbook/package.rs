@@ -123,3 +123,28 @@ fn one_file_by_two_paths() {
         assert!(same_file(&path, &other));
     }
 }
+
+/// Real files are let in, or refused for one of the reasons that are right for real files.
+#[test]
+fn real_workbooks_pass_the_checks() {
+    let mut refused = Vec::new();
+    for path in corpus() {
+        let name = path.file_name().unwrap().to_string_lossy().into_owned();
+        let checked = Package::open(&path).and_then(|package| {
+            let warnings = hence_workbook::preflight::preflight(&package)?;
+            Ok((warnings, package.graftable()))
+        });
+        match checked {
+            Ok((warnings, graftable)) => {
+                let codes: Vec<&str> = warnings.iter().map(|problem| problem.code).collect();
+                let graft = graftable.map_or_else(|problem| problem.code, |()| "accepted");
+                println!("{name:60} {graft} {codes:?}");
+            }
+            Err(error) => {
+                println!("{name:60} refused: {error}");
+                refused.push(name);
+            }
+        }
+    }
+    println!("refused: {refused:?}");
+}
