@@ -4,6 +4,7 @@
 //! here is where they are read from, where they go, and the proof that comes with them.
 
 pub mod appraisal;
+pub mod graft;
 pub mod model;
 pub mod names_edit;
 pub mod outcome;
@@ -16,5 +17,8 @@ pub mod references;
 pub mod resolve;
 pub mod roles;
 pub mod sheets;
+mod splice;
 pub mod stale;
+pub mod styles;
+pub mod verify;
 pub mod xml;

@@ -1,10 +1,12 @@
 //! The workbook crate from outside: real, small and hostile workbooks.
 
 mod bare;
+mod graft;
 mod hostile;
 mod model;
 mod names_edit;
 mod package;
+mod patch;
 mod references;
 mod resolve;
 mod roles;
