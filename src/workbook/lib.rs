@@ -4,8 +4,11 @@
 //! here is where they are read from, where they go, and the proof that comes with them.
 
 pub mod appraisal;
+pub mod formulas;
+pub mod layout;
 pub mod outcome;
 pub mod patch;
 pub mod problem;
 pub mod references;
 pub mod sheets;
+pub mod writer;
