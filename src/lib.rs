@@ -24,7 +24,7 @@ mod timing;
 
 pub use basis::{Basis, Catalogue, PriceBasis};
 pub use calendar::{DayCount, offset_of_dates, parse_financial_year};
-pub use curve::Curve;
+pub use curve::{Curve, Domain, Parts};
 pub use error::{Error, ErrorKind, Result};
 pub use evidence::{elasticity_from_taxes, equity_weight, ramsey_rate};
 pub use irr::{IrrSearch, internal_rates};
