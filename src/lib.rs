@@ -8,6 +8,7 @@
 
 mod basis;
 mod calendar;
+mod catalogue;
 mod curve;
 mod dd;
 mod error;
@@ -22,8 +23,9 @@ mod sum;
 mod tail;
 mod timing;
 
-pub use basis::{Basis, Catalogue, PriceBasis};
+pub use basis::{Basis, CAUTION, PriceBasis};
 pub use calendar::{DayCount, offset_of_dates, parse_financial_year};
+pub use catalogue::Catalogue;
 pub use curve::{Curve, Domain, Parts};
 pub use error::{Error, ErrorKind, Result};
 pub use evidence::{elasticity_from_taxes, equity_weight, ramsey_rate};
@@ -33,6 +35,7 @@ pub use measures::{
     net_present_value, present_value, present_values,
 };
 pub use prices::{nominal_rate, real_flows, real_rate};
+pub use rateline::{RateLine, percent};
 pub use schedule::{Schedule, ScheduleStatus};
 pub use spec::{Band, Compounding, Edge, HorizonRule, Spec, Where};
 pub use sum::{ExactSum, dot, sum};
