@@ -11,7 +11,7 @@ use xlsxwriter::worksheet::PaperType;
 
 use crate::patch::Cached;
 use crate::problem::{Place, Problem, Result};
-use crate::references::{Cell, Range, quote_sheet};
+use crate::references::{Cell, Range};
 
 mod chart;
 
@@ -37,6 +37,8 @@ pub enum Style {
     Wrapped,
     /// Bold text that wraps: a label, a verdict.
     Strong,
+    /// The verdict: bold, large, on one line.
+    Verdict,
     /// A whole number such as a year.
     Year,
     /// A date.
@@ -77,6 +79,9 @@ impl Style {
                 format.set_bold().set_text_wrap().set_border_bottom(FormatBorder::Thin);
                 format.set_align(FormatAlignment::Center);
                 format.set_pattern(FormatPatterns::Solid).set_fg_color(FormatColor::Custom(0xE7_E6_E6));
+            }
+            Style::Verdict => {
+                format.set_bold().set_font_size(12.0);
             }
             Style::Wrapped => {
                 format.set_text_wrap().set_align(FormatAlignment::Left);
@@ -222,11 +227,6 @@ impl Sheet {
             col: a.col.max(b.col),
         });
         Range { first: Cell { row: 0, col: 0 }, last }
-    }
-
-    /// The print titles as the text of their defined name.
-    pub fn print_titles(&self) -> Option<String> {
-        self.repeat.map(|(a, b)| format!("{}!${}:${}", quote_sheet(&self.name), a + 1, b + 1))
     }
 
     fn width(&self, col: u32) -> f64 {

@@ -1,1 +1,3 @@
-//! x
+//! Tests of the workbook crate.
+mod formulas;
+mod scenario;

@@ -14,7 +14,7 @@ pub const VERDICT: &str = "hence_verdict";
 /// A defined name that goes with hence's sheets.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct OwnName {
-    /// The name; print titles as `_xlnm.Print_Titles`.
+    /// The name.
     pub name: String,
     /// The visible name of the sheet it is scoped to; none for the workbook.
     pub scope_sheet: Option<String>,
@@ -64,9 +64,9 @@ pub fn digest(cells: &[(Cell, String)]) -> String {
     hash.finalize().iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
-/// The names of one sheet: the mark of ownership, and its print titles. To be taken before notes of a
-/// person are put back, so that they stand outside of what hence calls its own.
-pub(super) fn names_of(sheet: &Sheet) -> Vec<OwnName> {
+/// The mark of ownership of one sheet. To be taken before notes of a person are put back, so that they
+/// stand outside of what hence calls its own. (Print titles come with the package.)
+pub(super) fn mark(sheet: &Sheet) -> OwnName {
     let texts: Vec<(Cell, String)> = sheet
         .cells()
         .filter_map(|(cell, content)| match content {
@@ -75,23 +75,13 @@ pub(super) fn names_of(sheet: &Sheet) -> Vec<OwnName> {
         })
         .collect();
     let range = crate::formulas::absolute(sheet.used());
-    let mut names = vec![OwnName {
+    OwnName {
         name: OWN.to_owned(),
         scope_sheet: Some(sheet.name.clone()),
         text: format!("{}!{range}", quote_sheet(&sheet.name)),
         hidden: true,
         comment: Some(digest(&texts)),
-    }];
-    if let Some(text) = sheet.print_titles() {
-        names.push(OwnName {
-            name: "_xlnm.Print_Titles".to_owned(),
-            scope_sheet: Some(sheet.name.clone()),
-            text,
-            hidden: false,
-            comment: None,
-        });
     }
-    names
 }
 
 #[cfg(test)]

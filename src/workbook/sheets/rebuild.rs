@@ -18,6 +18,7 @@ pub(super) struct Rebuilt {
     pub route: Option<Route>,
     /// Offsets rebuilt from the labels.
     pub offsets: Vec<f64>,
+    factors: Option<Vec<f64>>,
     /// Every factor is the mean of those at start and end of its year.
     pub averaged: bool,
     /// The first row of the block's inputs on the checks sheet.
@@ -63,7 +64,12 @@ impl Rebuilt {
         let length = length_of(&outcome.curve.parts());
         let at = Where { base_year: base_year(&choice.base.value), length };
         let route = Route::of(outcome.basis.spec(), &at, lowest, reach);
-        Rebuilt { route, offsets, averaged, top: 0, parts: Vec::new(), grid: 0 }
+        let factor = |route: &Route, t: f64| {
+            let at = route.factor(t);
+            if averaged { (at + route.factor(t - 1.0)) / 2.0 } else { at }
+        };
+        let factors = route.as_ref().map(|route| offsets.iter().map(|&t| factor(route, t)).collect());
+        Rebuilt { route, offsets, factors, averaged, top: 0, parts: Vec::new(), grid: 0 }
     }
 
     /// Places the inputs from row `top` down; returns the first free row.
@@ -92,10 +98,7 @@ impl Rebuilt {
 
     /// The rebuilt factor of row i.
     pub fn factor(&self, i: usize) -> Option<f64> {
-        let route = self.route.as_ref()?;
-        let t = self.offsets[i];
-        let at = route.factor(t);
-        Some(if self.averaged { (at + route.factor(t - 1.0)) / 2.0 } else { at })
+        self.factors.as_ref().map(|factors| factors[i])
     }
 
     /// The sum of rebuilt factors of service years 1 to N.

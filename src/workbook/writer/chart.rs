@@ -1,12 +1,10 @@
-//! Charts as plain data, told apart by dashes, markers and patterns as well as by colour.
+//! Charts as plain data. What tells series apart without colour is finished in the package's chart part.
 
-use xlsxwriter::chart::{
-    ChartDashType, ChartLine, ChartMarkerType, ChartPattern, ChartPatternType, ChartType,
-};
-use xlsxwriter::format::FormatColor;
+use xlsxwriter::chart::ChartType;
 use xlsxwriter::prelude::{Workbook, Worksheet};
 
-use crate::references::{Cell, SheetRange, quote_sheet};
+use crate::formulas::refer;
+use crate::references::{Cell, SheetRange};
 
 /// The kind of a chart.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -35,21 +33,9 @@ pub struct Chart {
     pub kind: ChartKind,
     /// Its title.
     pub title: String,
-    /// Its series.
+    /// Its series; a chart without any is not written.
     pub series: Vec<Series>,
 }
-
-const INKS: [u32; 6] = [0x1F_3B_6F, 0xB3_4A_00, 0x2E_6B_34, 0x6A_2A_6E, 0x4D_4D_4D, 0x00_6E_7F];
-const DASHES: [ChartDashType; 4] =
-    [ChartDashType::Solid, ChartDashType::Dash, ChartDashType::RoundDot, ChartDashType::LongDashDot];
-const PATTERNS: [ChartPatternType; 6] = [
-    ChartPatternType::Percent75,
-    ChartPatternType::WideUpwardDiagonal,
-    ChartPatternType::Percent20,
-    ChartPatternType::DarkHorizontal,
-    ChartPatternType::DiagonalBrick,
-    ChartPatternType::LightVertical,
-];
 
 impl Chart {
     pub(super) fn insert(
@@ -59,57 +45,17 @@ impl Chart {
         at: Cell,
     ) -> Result<(), xlsxwriter::XlsxError> {
         let mut chart = book.add_chart(match self.kind {
-            ChartKind::Lines => ChartType::ScatterStraightWithMarkers,
+            ChartKind::Lines => ChartType::ScatterStraight,
             ChartKind::Columns => ChartType::Column,
         });
-        chart.add_title(&self.title)?;
-        for (i, series) in self.series.iter().enumerate() {
+        chart.add_title(&super::legal(&self.title))?;
+        for series in &self.series {
+            // A name that begins with an equals sign would be read as a reference.
+            let name = super::legal(series.name.trim_start_matches('='));
+            let formula = |range| format!("={}", refer("", range));
             let mut out = chart.add_series(Some(&formula(&series.x)), Some(&formula(&series.y)))?;
-            out.set_name(&super::legal(&series.name))?;
-            let ink = FormatColor::Custom(INKS[i % INKS.len()]);
-            let mut line = ChartLine::new();
-            line.color = ink;
-            line.width = 1.75;
-            match self.kind {
-                ChartKind::Lines => {
-                    line.dash_type = DASHES[i % DASHES.len()];
-                    out.set_line(&line);
-                    out.set_marker_type(marker(i));
-                    out.set_marker_size(4);
-                }
-                ChartKind::Columns => {
-                    line.width = 0.75;
-                    out.set_line(&line);
-                    out.set_pattern(&ChartPattern::new(
-                        ink,
-                        FormatColor::White,
-                        PATTERNS[i % PATTERNS.len()],
-                    ));
-                }
-            }
+            out.set_name(&name)?;
         }
         sheet.insert_chart(at.row, at.col as u16, &chart)
     }
-}
-
-fn marker(i: usize) -> ChartMarkerType {
-    // Every second line goes without a marker's clutter only where dashes already tell it apart.
-    match i % 5 {
-        0 => ChartMarkerType::MarkerNone,
-        1 => ChartMarkerType::MarkerCircle,
-        2 => ChartMarkerType::MarkerSquare,
-        3 => ChartMarkerType::MarkerTriangle,
-        _ => ChartMarkerType::MarkerDiamond,
-    }
-}
-
-fn formula(range: &SheetRange) -> String {
-    let (a, b) = (range.range.first, range.range.last);
-    format!("={}!{}:{}", quote_sheet(&range.sheet), absolute(a), absolute(b))
-}
-
-fn absolute(cell: Cell) -> String {
-    let text = cell.to_string();
-    let digits = text.find(|c: char| c.is_ascii_digit()).unwrap_or(0);
-    format!("${}${}", &text[..digits], &text[digits..])
 }
