@@ -4,7 +4,9 @@
 //! here is where they are read from, where they go, and the proof that comes with them.
 
 pub mod appraisal;
+pub mod formulas;
 pub mod graft;
+pub mod layout;
 pub mod model;
 pub mod names_edit;
 pub mod outcome;
@@ -21,4 +23,5 @@ mod splice;
 pub mod stale;
 pub mod styles;
 pub mod verify;
+pub mod writer;
 pub mod xml;

@@ -1,6 +1,8 @@
-//! The workbook crate from outside: real, small and hostile workbooks.
 
+//! Tests of the workbook crate.
+//! The workbook crate from outside: real, small and hostile workbooks.
 mod bare;
+mod formulas;
 mod graft;
 mod hostile;
 mod model;
@@ -10,5 +12,6 @@ mod patch;
 mod references;
 mod resolve;
 mod roles;
+mod scenario;
 mod small;
 mod stale;

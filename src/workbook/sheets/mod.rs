@@ -1,9 +1,29 @@
 //! hence's own sheets: Discounting, which the filled formulas refer to, and the audit sheets.
 
+mod changes;
+mod charts;
+mod checks;
+mod coverage;
+mod discounting;
+mod lines;
+mod offsets;
+mod own;
+mod rebuild;
+mod second_route;
+mod summary;
+
+use hence_core::CAUTION;
+
 use crate::appraisal::Appraisal;
+use crate::layout::Layout;
 use crate::outcome::ChoiceOutcome;
-use crate::problem::Problem;
+use crate::problem::{Problem, Result};
 use crate::references::{Cell, SheetRange};
+use crate::writer::{self, Sheet, Style};
+
+pub use charts::{ChartFinish, Legend};
+pub use own::{OWN, OwnName, VERDICT, digest};
+pub use summary::VERDICT_AGREES;
 
 /// The visible names of hence's sheets in this workbook, chosen so that they clash with nothing.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -103,4 +123,85 @@ pub struct AuditInput<'a> {
     pub problems: &'a [Problem],
     /// Notes to put back.
     pub carried: &'a [Carried],
+    /// What differs in the package by design, a sentence each.
+    pub differs: &'a [String],
+}
+
+/// hence's sheets, made.
+#[derive(Clone, Debug)]
+pub struct Built {
+    /// A package of their own, to be grafted.
+    pub bytes: Vec<u8>,
+    /// How to finish its charts, in their order.
+    pub charts: Vec<ChartFinish>,
+    /// Names that go with the sheets: the verdict cell, and the mark of ownership of each sheet.
+    pub names: Vec<OwnName>,
+    /// The verdict, evaluated here by the second route; the cell holds it live.
+    pub verdict: String,
+    /// Number of checks, valued totals included, and of those that differ.
+    pub checks: (usize, usize),
+}
+
+/// hence's sheets as plain data, in the order in which they stand.
+#[derive(Clone, Debug)]
+pub struct Composed {
+    /// Discounting, then the audit sheets.
+    pub sheets: Vec<Sheet>,
+    /// All else that [`build`] gives, its bytes still empty.
+    pub built: Built,
+}
+
+/// Composes the sheet Discounting and the audit sheets.
+pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
+    let checks = checks::sheet(input, layout);
+    let coverage = coverage::sheet(input);
+    let summary = summary::sheet(input, layout, &checks, &coverage);
+    let (charts, finishes) = charts::sheet(input, layout);
+    let mut names = vec![OwnName {
+        name: VERDICT.to_owned(),
+        scope_sheet: None,
+        text: summary::verdict_text(&summary.sheet.name, summary.cell),
+        hidden: false,
+        comment: Some("The verdict of the audit: agrees, or begins with \"differs\".".to_owned()),
+    }];
+    let discounting = discounting::sheet(input, layout);
+    let mut sheets =
+        vec![discounting, summary.sheet, coverage.sheet, checks.sheet, changes::sheet(input), charts];
+    names.extend(sheets.iter().map(own::mark));
+    for sheet in &mut sheets {
+        put_back(sheet, input.carried);
+    }
+    let built = Built {
+        bytes: Vec::new(),
+        charts: finishes,
+        names,
+        verdict: summary.verdict,
+        checks: (checks.count + coverage.valued, checks.differing.len()),
+    };
+    Composed { sheets, built }
+}
+
+/// Makes the sheet Discounting and the audit sheets as a package.
+///
+/// **Errors**: `own-sheet` where a number is not finite or a formula would be too long.
+pub fn build(input: &AuditInput<'_>, layout: &Layout) -> Result<Built> {
+    let Composed { sheets, built } = compose(input, layout);
+    Ok(Built { bytes: writer::package(&sheets)?, ..built })
+}
+
+/// Puts notes back where they stood, or in the first free row below what hence wrote there.
+fn put_back(sheet: &mut Sheet, carried: &[Carried]) {
+    let used = sheet.used().last;
+    let mut free = used.row + 1;
+    let own: Vec<&Carried> = carried.iter().filter(|note| note.sheet == sheet.name).collect();
+    for note in &own {
+        if note.cell.row > used.row || note.cell.col > used.col {
+            sheet.text(note.cell.row, note.cell.col, Style::Text, &note.text);
+            free = free.max(note.cell.row + 1);
+        }
+    }
+    for note in own.iter().filter(|note| note.cell.row <= used.row && note.cell.col <= used.col) {
+        sheet.text(free, 0, Style::Text, &note.text);
+        free += 1;
+    }
 }

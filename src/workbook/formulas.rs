@@ -1,0 +1,359 @@
+//! The live formulas: present values over the analyst's own cells, and what goes into each target.
+//!
+//! Texts are in the file's syntax (commas, no leading equals sign), valid in Excel and LibreOffice
+//! without array entry, and come with the result that the library computed.
+
+use crate::appraisal::{Appraisal, Choice, Direction, Held, Stream, StreamKind, Target, TargetRole};
+use crate::layout::{Column, Layout};
+use crate::outcome::ChoiceOutcome;
+use crate::patch::{Cached, CellWrite};
+use crate::references::{Cell, Range, SheetRange, quote_sheet};
+use crate::writer::MAX_FORMULA;
+
+/// Relative difference up to which two factors are the same.
+pub const FACTOR_TOLERANCE: f64 = 1e-9;
+
+/// The text where no rate of return was found.
+pub const NO_IRR: &str = "none between -50% and 100%";
+/// The text where the cumulated present value never reaches zero.
+pub const NO_PAYBACK: &str = "not paid back within the years valued";
+
+/// Cells with both dollar signs: `$A$1:$A$9`.
+pub fn absolute(range: Range) -> String {
+    let first = cell_text(range.first, true, true);
+    if range.first == range.last { first } else { format!("{first}:{}", cell_text(range.last, true, true)) }
+}
+
+/// Cells as a formula on sheet `home` refers to them: absolute, the sheet named unless it is `home`.
+pub fn refer(home: &str, at: &SheetRange) -> String {
+    format!("{}{}", prefix(home, &at.sheet), absolute(at.range))
+}
+
+/// One cell as a formula on sheet `home` refers to it, relative.
+pub fn refer_cell(home: &str, sheet: &str, cell: Cell) -> String {
+    format!("{}{cell}", prefix(home, sheet))
+}
+
+fn prefix(home: &str, sheet: &str) -> String {
+    if home == sheet { String::new() } else { format!("{}!", quote_sheet(sheet)) }
+}
+
+fn cell_text(cell: Cell, col: bool, row: bool) -> String {
+    let text = cell.to_string();
+    let digits = text.find(|c: char| c.is_ascii_digit()).unwrap_or(0);
+    let dollar = |fixed| if fixed { "$" } else { "" };
+    format!("{}{}{}{}", dollar(col), &text[..digits], dollar(row), &text[digits..])
+}
+
+/// The i-th cell of a row or column of cells.
+pub fn nth(range: Range, i: usize) -> Cell {
+    let i = i as u32;
+    if range.last.row > range.first.row {
+        Cell { row: range.first.row + i, col: range.first.col }
+    } else {
+        Cell { row: range.first.row, col: range.first.col + i }
+    }
+}
+
+/// A number as a formula holds it.
+pub fn literal(x: f64) -> String {
+    let magnitude = x.abs();
+    if x == 0.0 || (1e-5..1e15).contains(&magnitude) { format!("{x}") } else { format!("{x:E}") }
+}
+
+/// +1 where a stream counts for the net, -1 where against.
+pub fn side(kind: StreamKind) -> f64 {
+    match kind {
+        StreamKind::Benefit | StreamKind::Flow => 1.0,
+        StreamKind::Cost | StreamKind::Damage => -1.0,
+    }
+}
+
+/// What multiplies each raw flow, as `-1000*(1+Sheet!$B$2)*`; empty where nothing does.
+pub fn scale(stream: &Stream, home: &str) -> String {
+    let constant = stream.sign * stream.unit;
+    let mut text = if constant == 1.0 { String::new() } else { format!("{}*", literal(constant)) };
+    match &stream.uplift.at {
+        Some(at) => text.push_str(&format!("(1+{})*", refer(home, at))),
+        None if stream.uplift.value != 0.0 => {
+            text.push_str(&format!("(1+{})*", literal(stream.uplift.value)));
+        }
+        None => {}
+    }
+    text
+}
+
+/// What the residual value adds to the last flow, as `-1000*Sheet!$B$3`; none without one.
+///
+/// It lowers a cost or a damage and raises a benefit, in the stream's unit and sign.
+pub fn residual(stream: &Stream, home: &str) -> Option<String> {
+    let given = stream.residual.as_ref()?;
+    let factor = side(stream.kind) * stream.sign * stream.unit;
+    let value = given.at.as_ref().map_or_else(|| literal(given.value), |at| refer(home, at));
+    Some(match factor {
+        1.0 => format!("+{value}"),
+        -1.0 => format!("-{value}"),
+        f if f > 0.0 => format!("+{}*{value}", literal(f)),
+        f => format!("{}*{value}", literal(f)),
+    })
+}
+
+/// Where the factors of an option stand that formulas may use: the analyst's own factor cells, if
+/// hence fills them or found them in agreement.
+pub fn analyst_factors<'a>(
+    appraisal: &'a Appraisal,
+    layout: &Layout,
+    outcomes: &[ChoiceOutcome],
+    choice: usize,
+) -> Option<&'a SheetRange> {
+    let own = format!("INDEX({}!", quote_sheet(&layout.names.discounting));
+    let factors = &outcomes[choice].factors;
+    let usable = |(i, held): (usize, &Held)| match held {
+        Held::Blank | Held::Number(_) => true,
+        Held::Formula { text, value } => {
+            let agrees = |v: f64| (v - factors[i]).abs() <= FACTOR_TOLERANCE * factors[i].abs();
+            text.starts_with(&own) || value.is_some_and(agrees)
+        }
+        Held::Text(_) | Held::Error(_) => false,
+    };
+    appraisal.choices[choice]
+        .targets
+        .iter()
+        .filter(|t| t.role == TargetRole::Factor && t.held.len() == factors.len())
+        .find(|t| t.held.iter().enumerate().all(usable))
+        .map(|t| &t.at)
+}
+
+/// The present value of one stream as an expression for a formula on sheet `home`; none where it
+/// would be longer than a formula may be (the table on Discounting holds it then).
+pub fn pv_expression(
+    appraisal: &Appraisal,
+    outcomes: &[ChoiceOutcome],
+    layout: &Layout,
+    choice: usize,
+    stream: usize,
+    home: &str,
+) -> Option<String> {
+    let flows = &appraisal.choices[choice].streams[stream];
+    let axis = &appraisal.axes[appraisal.choices[choice].axis];
+    let labels = refer(home, &layout.labels(choice));
+    let block = refer(home, &layout.factors(choice));
+    let cells = refer(home, &flows.at);
+    let factors = analyst_factors(appraisal, layout, outcomes, choice);
+    let product = match (factors, axis.direction) {
+        (Some(at), _) => format!("SUMPRODUCT({cells},{})", refer(home, at)),
+        (None, Direction::Down) => format!("SUMPRODUCT({cells},{block})"),
+        // A comparison of a column with a row is a table in both programs, without array entry.
+        (None, Direction::Across) => {
+            format!("SUMPRODUCT(({labels}={})*{block}*{cells})", refer(home, &axis.at))
+        }
+    };
+    let mut text = format!("{}{product}", scale(flows, home));
+    let last = outcomes[choice].factors.len().saturating_sub(1);
+    if let Some(residual) = residual(flows, home) {
+        let at = factors.map_or_else(|| layout.factors(choice), SheetRange::clone);
+        let cell = nth(at.range, last);
+        text.push_str(&format!("{residual}*{}{}", prefix(home, &at.sheet), cell_text(cell, true, true)));
+    }
+    if flows.tail.is_some() {
+        let cell = layout.cell(layout.rows[choice].streams[stream], Column::Tail);
+        let at = SheetRange { sheet: layout.names.discounting.clone(), range: one(cell) };
+        text.push_str(&format!("+{}", refer(home, &at)));
+    }
+    (text.chars().count() <= MAX_FORMULA).then_some(text)
+}
+
+/// The undiscounted total of one stream as an expression for a formula on sheet `home`.
+pub fn sum_expression(stream: &Stream, home: &str) -> String {
+    let total = format!("{}SUM({})", scale(stream, home), refer(home, &stream.at));
+    format!("{total}{}", residual(stream, home).unwrap_or_default())
+}
+
+/// One cell as a range.
+pub fn one(cell: Cell) -> Range {
+    Range { first: cell, last: cell }
+}
+
+/// What each cell of a target comes to on the option's basis.
+pub fn expected(
+    appraisal: &Appraisal,
+    outcomes: &[ChoiceOutcome],
+    layout: &Layout,
+    choice: usize,
+    target: &Target,
+) -> Vec<Cached> {
+    let outcome = &outcomes[choice];
+    let totals = outcome.totals();
+    let stream = |name: &str| find(&appraisal.choices[choice], name).map(|s| &outcome.streams[s]);
+    let missing = || Cached::Text("no stream of that name".to_owned());
+    let number = |x: f64| vec![Cached::Number(x)];
+    match &target.role {
+        TargetRole::Factor => outcome.factors.iter().map(|&d| Cached::Number(d)).collect(),
+        TargetRole::Rates => outcome.forward.iter().map(|r| Cached::Number(r.unwrap_or(0.0))).collect(),
+        TargetRole::PvByYear(None) => {
+            outcome.net.iter().zip(&outcome.factors).map(|(x, d)| Cached::Number(x * d)).collect()
+        }
+        TargetRole::PvByYear(Some(name)) => match stream(name) {
+            Some(s) => s.pv_by_year.iter().map(|&x| Cached::Number(x)).collect(),
+            None => outcome.factors.iter().map(|_| missing()).collect(),
+        },
+        TargetRole::PvTotal(Some(name)) => {
+            vec![stream(name).map_or_else(missing, |s| Cached::Number(s.pv))]
+        }
+        TargetRole::PvTotal(None) => number(outcome.absolute.npv),
+        TargetRole::PvCosts => number(totals.pv_costs),
+        TargetRole::PvBenefits => number(totals.pv_benefits),
+        TargetRole::Npv => number(totals.npv),
+        TargetRole::Ratio => vec![or_text(totals.ratio, no_ratio(outcome))],
+        TargetRole::Annual => vec![or_text(totals.annual, NO_ANNUAL)],
+        TargetRole::Irr => vec![match outcome.irr.as_slice() {
+            [] => Cached::Text(NO_IRR.to_owned()),
+            [rate] => Cached::Number(*rate),
+            _ => Cached::Text(format!("several rates: see {}", layout.names.summary)),
+        }],
+        TargetRole::Payback => vec![match (outcome.payback.first, outcome.payback.last) {
+            (None, _) => Cached::Text(NO_PAYBACK.to_owned()),
+            (Some(a), Some(b)) if a == b => Cached::Number(a),
+            _ => Cached::Text(format!("several crossings: see {}", layout.names.summary)),
+        }],
+    }
+}
+
+/// The text where the ratio has no meaning.
+pub fn no_ratio(outcome: &ChoiceOutcome) -> &'static str {
+    match outcome.increment {
+        Some(_) => "no ratio: costs over the baseline are not positive",
+        None => "no ratio: costs are not positive",
+    }
+}
+
+/// The text where there is no annual equivalent.
+pub const NO_ANNUAL: &str = "no annual equivalent: no service years";
+
+fn or_text(value: Option<f64>, text: &str) -> Cached {
+    value.map_or_else(|| Cached::Text(text.to_owned()), Cached::Number)
+}
+
+/// The stream of that name, whatever its case.
+pub fn find(choice: &Choice, name: &str) -> Option<usize> {
+    choice.streams.iter().position(|s| s.name.to_lowercase() == name.to_lowercase())
+}
+
+/// What to write into each cell of a target: a formula with its result, or with `formulas` false the
+/// plain number.
+pub fn target_writes(
+    appraisal: &Appraisal,
+    outcomes: &[ChoiceOutcome],
+    layout: &Layout,
+    choice: usize,
+    target: &Target,
+    formulas: bool,
+) -> Vec<CellWrite> {
+    let results = expected(appraisal, outcomes, layout, choice, target);
+    let make = Maker { appraisal, outcomes, layout, choice, home: &target.at.sheet };
+    let write = |(i, result): (usize, Cached)| {
+        let text = if formulas { make.formula(target, i) } else { None };
+        match (text, result) {
+            (Some(text), result) => CellWrite::Formula(text, result),
+            (None, Cached::Text(text)) => CellWrite::Text(text),
+            (None, Cached::Number(x)) => CellWrite::Number(x),
+            (None, Cached::None) => CellWrite::Text(String::new()),
+        }
+    };
+    results.into_iter().enumerate().map(write).collect()
+}
+
+/// Formulas of one option's targets on one sheet.
+struct Maker<'a> {
+    appraisal: &'a Appraisal,
+    outcomes: &'a [ChoiceOutcome],
+    layout: &'a Layout,
+    choice: usize,
+    home: &'a str,
+}
+
+impl Maker<'_> {
+    fn formula(&self, target: &Target, i: usize) -> Option<String> {
+        let choice = &self.appraisal.choices[self.choice];
+        let rows = &self.layout.rows[self.choice];
+        let sums = self.layout.sums(self.choice);
+        match &target.role {
+            TargetRole::Factor => Some(self.look_up(&self.layout.factors(self.choice), i)),
+            TargetRole::Rates => Some(self.look_up(&self.layout.forward(self.choice), i)),
+            TargetRole::PvByYear(Some(name)) => {
+                let flow = self.flow(&choice.streams[find(choice, name)?], i, true);
+                let text = format!("{flow}*{}", self.factor(i));
+                (text.len() <= MAX_FORMULA).then_some(text)
+            }
+            TargetRole::PvByYear(None) => {
+                let mut sum = String::new();
+                for (k, stream) in choice.streams.iter().enumerate() {
+                    let plus = side(stream.kind) > 0.0;
+                    sum.push_str(if !plus {
+                        "-"
+                    } else if k > 0 {
+                        "+"
+                    } else {
+                        ""
+                    });
+                    sum.push_str(&self.flow(stream, i, false));
+                }
+                let text = format!("({sum})*{}", self.factor(i));
+                // A number is left where so many streams do not fit into one formula.
+                (!sum.is_empty() && text.len() <= MAX_FORMULA).then_some(text)
+            }
+            TargetRole::PvTotal(Some(name)) => {
+                let s = find(choice, name)?;
+                let (a, o, l) = (self.appraisal, self.outcomes, self.layout);
+                pv_expression(a, o, l, self.choice, s, self.home)
+                    .or_else(|| Some(self.table(rows.streams[s])))
+            }
+            TargetRole::PvTotal(None) => Some(self.table(rows.absolute.net)),
+            TargetRole::PvCosts => Some(self.table(sums.costs)),
+            TargetRole::PvBenefits => Some(self.table(sums.benefits)),
+            TargetRole::Npv => Some(self.table(sums.net)),
+            TargetRole::Ratio => Some(self.table(rows.ratio)),
+            TargetRole::Annual => Some(self.table(rows.annual)),
+            // No closed form stands behind these: they are written as found.
+            TargetRole::Irr | TargetRole::Payback => None,
+        }
+    }
+
+    fn table(&self, row: u32) -> String {
+        let range = one(self.layout.cell(row, Column::Value));
+        refer(self.home, &SheetRange { sheet: self.layout.names.discounting.clone(), range })
+    }
+
+    /// INDEX/MATCH by the label in the analyst's years cell.
+    fn look_up(&self, column: &SheetRange, i: usize) -> String {
+        let axis = &self.appraisal.axes[self.appraisal.choices[self.choice].axis];
+        let across = axis.direction == Direction::Across;
+        let label = cell_text(nth(axis.at.range, i), !across, across);
+        let labels = refer(self.home, &self.layout.labels(self.choice));
+        let values = refer(self.home, column);
+        format!("INDEX({values},MATCH({}{label},{labels},0))", prefix(self.home, &axis.at.sheet))
+    }
+
+    /// The analyst's factor cell where there is one, else the look-up.
+    fn factor(&self, i: usize) -> String {
+        match analyst_factors(self.appraisal, self.layout, self.outcomes, self.choice) {
+            Some(at) => {
+                let down = at.range.last.row > at.range.first.row;
+                format!("{}{}", prefix(self.home, &at.sheet), cell_text(nth(at.range, i), down, !down))
+            }
+            None => self.look_up(&self.layout.factors(self.choice), i),
+        }
+    }
+
+    /// One flow after unit, sign, uplift and residual; in brackets where it is a sum.
+    fn flow(&self, stream: &Stream, i: usize, leading: bool) -> String {
+        let cell = format!("{}{}", prefix(self.home, &stream.at.sheet), nth(stream.at.range, i));
+        let text = format!("{}{cell}", scale(stream, self.home));
+        let last = i + 1 == self.outcomes[self.choice].factors.len();
+        match residual(stream, self.home).filter(|_| last) {
+            Some(residual) => format!("({text}{residual})"),
+            None if !leading && text.starts_with('-') => format!("({text})"),
+            None => text,
+        }
+    }
+}

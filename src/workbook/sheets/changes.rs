@@ -1,0 +1,37 @@
+//! The changes sheet: every cell that this fill wrote, with what it held before.
+
+use super::AuditInput;
+use crate::references::quote_sheet;
+use crate::writer::{Sheet, Style};
+
+/// The row of column headings.
+const HEADING: u32 = 3;
+
+/// Makes the sheet.
+pub(super) fn sheet(input: &AuditInput<'_>) -> Sheet {
+    let mut sheet = Sheet::new(&input.names.changes);
+    for (i, width) in [24.0, 12.0, 26.0, 40.0, 60.0].into_iter().enumerate() {
+        sheet.columns(i as u32, i as u32, width);
+    }
+    sheet.text(0, 0, Style::Title, "Audit changes");
+    let words = match input.changes.len() {
+        0 => "This fill changed no cell of the workbook.".to_owned(),
+        1 => "This fill changed one cell of the workbook; every other cell is as it was.".to_owned(),
+        n => format!("This fill changed {n} cells of the workbook; every other cell is as it was."),
+    };
+    sheet.paragraph(1, 0, 4, Style::Wrapped, words);
+    for (i, heading) in ["Sheet", "Cell", "Role", "Before", "After"].iter().enumerate() {
+        sheet.text(HEADING, i as u32, Style::Heading, heading);
+    }
+    for (i, change) in input.changes.iter().enumerate() {
+        let row = HEADING + 1 + i as u32;
+        sheet.text(row, 0, Style::Text, quote_sheet(&change.at.sheet));
+        sheet.text(row, 1, Style::Text, change.at.range.to_string());
+        sheet.text(row, 2, Style::Wrapped, &change.role);
+        sheet.text(row, 3, Style::Wrapped, if change.before.is_empty() { "(blank)" } else { &change.before });
+        sheet.text(row, 4, Style::Wrapped, &change.after);
+    }
+    sheet.freeze(HEADING + 1, 0);
+    sheet.repeat(HEADING, HEADING);
+    sheet
+}

@@ -1,0 +1,543 @@
+//! The checks sheet: every factor, present value and filled cell against a second route, live.
+
+use super::lines::{AGREES, DIFFERS, Line, Live, col};
+use super::rebuild::Rebuilt;
+use super::{AuditInput, TargetCell, discounting::side_words, discounting::table_ref, offsets};
+use crate::appraisal::{Held, Label, StreamKind, TargetRole};
+use crate::formulas::{absolute, find, nth, refer, refer_cell, residual, scale, side};
+use crate::layout::{Column, LabelValue, Layout, label_value};
+use crate::patch::Cached;
+use crate::references::{Cell, Range, SheetRange, quote_sheet};
+use crate::writer::{MAX_FORMULA, Sheet, Style};
+
+/// The row of column headings.
+const HEADING: u32 = 3;
+/// The first section's row.
+const FIRST: u32 = 4;
+
+/// The checks sheet with what the summary needs of it.
+pub(super) struct Checks {
+    /// The sheet.
+    pub sheet: Sheet,
+    /// Its result column.
+    pub results: Range,
+    /// Number of checks.
+    pub count: usize,
+    /// Place of each check that differs, in order.
+    pub differing: Vec<String>,
+    /// Number of checks that have a second route.
+    pub independent: usize,
+}
+
+/// Where the parts of an option's section stand.
+#[derive(Clone, Copy)]
+struct Section {
+    /// Its heading.
+    top: u32,
+    /// The first year.
+    years: u32,
+    /// The first stream.
+    streams: u32,
+    /// Costs; benefits, net, the increments and the sum of factors follow.
+    sums: u32,
+    /// The first target cell.
+    cells: u32,
+    /// The row after its end.
+    end: u32,
+}
+
+struct Maker<'a> {
+    input: &'a AuditInput<'a>,
+    layout: &'a Layout,
+    rebuilt: Vec<Rebuilt>,
+    sections: Vec<Section>,
+    targets: Vec<Vec<&'a TargetCell>>,
+    home: &'a str,
+}
+
+/// Makes the sheet.
+pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
+    let rebuilt = (0..layout.blocks.len()).map(|k| Rebuilt::new(input, layout, k)).collect();
+    let mut make =
+        Maker { input, layout, rebuilt, sections: Vec::new(), targets: Vec::new(), home: &layout.names.checks };
+    make.plan();
+    let mut sheet = Sheet::new(&layout.names.checks);
+    head(&mut sheet, input);
+    let mut lines = Vec::new();
+    for c in 0..input.appraisal.choices.len() {
+        make.section(&mut sheet, c, &mut lines);
+    }
+    for (k, rebuilt) in make.rebuilt.iter().enumerate() {
+        let names: Vec<&str> =
+            layout.blocks[k].choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
+        rebuilt.write(&mut sheet, &format!("Inputs of the second route: {}", names.join(", ")));
+    }
+    for (row, line) in &lines {
+        line.write(&mut sheet, *row);
+    }
+    let end = make.sections.last().map_or(FIRST, |s| s.end);
+    let results = Range {
+        first: Cell { row: FIRST, col: col::RESULT },
+        last: Cell { row: end.max(FIRST + 1), col: col::RESULT },
+    };
+    Checks {
+        sheet,
+        results,
+        count: lines.len(),
+        differing: lines.iter().filter(|(_, l)| !l.agrees()).map(|(_, l)| l.place.clone()).collect(),
+        independent: lines.iter().filter(|(_, l)| l.rebuilt.is_some()).count(),
+    }
+}
+
+fn head(sheet: &mut Sheet, input: &AuditInput<'_>) {
+    sheet.columns(col::PLACE, col::PLACE, 30.0);
+    sheet.columns(col::WHAT, col::WHAT, 26.0);
+    sheet.columns(col::OFFSET, col::OFFSET, 10.0);
+    sheet.columns(col::REBUILT, col::NOW, 17.0);
+    sheet.columns(col::DIFFERENCE, col::RESULT, 11.0);
+    sheet.columns(9, 9, 3.0);
+    let most = input.appraisal.choices.iter().map(|c| c.streams.len()).max().unwrap_or(0) as u32;
+    sheet.columns(col::FLOWS, col::FLOWS + most.max(1), 14.0);
+    sheet.text(0, 0, Style::Title, "Audit checks");
+    let words = "Each factor and total is rebuilt here by a second route from the cells of the workbook, live: \
+                 change a flow, a year or a filled cell and its line turns from \"agrees\" to \"differs\". \
+                 Factors are compared relative to what was recorded, all else as an absolute difference.";
+    sheet.paragraph(1, 0, col::RESULT, Style::Wrapped, words);
+    let headings = [
+        "Cell",
+        "Year or role",
+        "Offset (years)",
+        "Second route",
+        "Recorded",
+        "Workbook now",
+        "Difference",
+        "Allowed",
+        "Result",
+    ];
+    for (i, heading) in headings.iter().enumerate() {
+        sheet.text(HEADING, i as u32, Style::Heading, heading);
+    }
+    sheet.text(HEADING, col::FLOWS, Style::Heading, "Flows as entered");
+    sheet.freeze(FIRST, 2);
+    sheet.repeat(HEADING, HEADING);
+}
+
+impl<'a> Maker<'a> {
+    fn plan(&mut self) {
+        let mut row = FIRST;
+        for (c, choice) in self.input.appraisal.choices.iter().enumerate() {
+            let cells: Vec<&TargetCell> = self
+                .input
+                .cells
+                .iter()
+                .filter(|cell| cell.choice == c)
+                .filter(|cell| Some(cell.target) != self.factor_target(c))
+                .collect();
+            let years = row + 1;
+            let streams = years + self.layout.block(c).rows;
+            let sums = streams + choice.streams.len() as u32;
+            let increments = if self.layout.rows[c].increment.is_some() { 3 } else { 0 };
+            let start = sums + 4 + increments;
+            let end = start + cells.len() as u32;
+            self.sections.push(Section { top: row, years, streams, sums, cells: start, end });
+            self.targets.push(cells);
+            row = end + 1;
+        }
+        for rebuilt in &mut self.rebuilt {
+            row = rebuilt.place(row + 1);
+        }
+    }
+
+    /// The target whose cells stand in the lines of the years.
+    fn factor_target(&self, c: usize) -> Option<usize> {
+        let rows = self.layout.block(c).rows as usize;
+        let targets = &self.input.appraisal.choices[c].targets;
+        targets.iter().position(|t| t.role == TargetRole::Factor && t.held.len() == rows)
+    }
+
+    fn section(&self, sheet: &mut Sheet, c: usize, lines: &mut Vec<(u32, Line)>) {
+        let choice = &self.input.appraisal.choices[c];
+        let outcome = &self.input.outcomes[c];
+        let at = self.sections[c];
+        let basis = outcome.basis.canonical();
+        sheet.text(at.top, 0, Style::Section, format!("{} ({basis}, base {})", choice.name, outcome.base_words));
+        for (s, stream) in choice.streams.iter().enumerate() {
+            let heading = format!("{} ({})", stream.name, side_words(stream.kind));
+            sheet.text(at.top, col::FLOWS + s as u32, Style::Heading, heading);
+            for (i, &raw) in stream.raw.iter().enumerate() {
+                let text = refer_cell(self.home, &stream.at.sheet, nth(stream.at.range, i));
+                let row = at.years + i as u32;
+                sheet.formula(row, col::FLOWS + s as u32, Style::Money, text, Cached::Number(raw));
+            }
+        }
+        for i in 0..outcome.factors.len() {
+            lines.push((at.years + i as u32, self.year(c, i)));
+        }
+        for s in 0..choice.streams.len() {
+            lines.push((at.streams + s as u32, self.stream(c, s)));
+        }
+        self.sums(c, lines);
+        for (k, cell) in self.targets[c].iter().enumerate() {
+            lines.push((at.cells + k as u32, self.target(c, cell)));
+        }
+    }
+
+    /// The factor of one year.
+    fn year(&self, c: usize, i: usize) -> Line {
+        let choice = &self.input.appraisal.choices[c];
+        let outcome = &self.input.outcomes[c];
+        let axis = &self.input.appraisal.axes[choice.axis];
+        let label = &axis.labels[i];
+        let row = self.sections[c].years + i as u32;
+        let (value, style) = match label_value(label, self.input.appraisal.date1904) {
+            LabelValue::Number(x, true) => (Cached::Number(x), Style::Date),
+            LabelValue::Number(x, false) => {
+                (Cached::Number(x), if matches!(label, Label::Offset(_)) { Style::Offset } else { Style::Year })
+            }
+            LabelValue::Text(text) => (Cached::Text(text), Style::Text),
+        };
+        let source = refer_cell(self.home, &axis.at.sheet, nth(axis.at.range, i));
+        let target = self.factor_target(c).map(|t| &choice.targets[t]);
+        let factors = self.layout.factors(c);
+        let at = target.map_or(&factors, |t| &t.at);
+        let cell = nth(at.range, i);
+        let mut line = Line::factor(place(&at.sheet, cell), Live { formula: source, value }, style);
+        let rebuilt = self.rebuilt(c);
+        let label_cell = absolute_cell(row, col::WHAT);
+        let offset = offsets::formula(&label_cell, label, choice, outcome.timing, self.home);
+        line.offset = Some(Live::number(offset, rebuilt.offsets[i]));
+        line.rebuilt = self.rebuilt_factor(c, i);
+        let recorded = refer_cell(self.home, &factors.sheet, nth(factors.range, i));
+        line.recorded = Live::number(recorded, outcome.factors[i]);
+        if let Some(t) = target {
+            let same = |other: &&TargetCell| other.at.sheet == at.sheet && other.at.range.first == cell;
+            let filled = self.input.cells.iter().find(same).is_none_or(|other| other.filled);
+            let value = if filled { Cached::Number(outcome.factors[i]) } else { held(&t.held[i]) };
+            line.now = Some(Live { formula: refer_cell(self.home, &at.sheet, cell), value });
+        }
+        line
+    }
+
+    fn rebuilt(&self, c: usize) -> &Rebuilt {
+        &self.rebuilt[self.layout.block_of[c]]
+    }
+
+    fn rebuilt_factor(&self, c: usize, i: usize) -> Option<Live> {
+        let row = self.sections[c].years + i as u32;
+        let rebuilt = self.rebuilt(c);
+        Some(Live::number(rebuilt.formula(&absolute_cell(row, col::OFFSET))?, rebuilt.factor(i)?))
+    }
+
+    fn has_route(&self, c: usize) -> bool {
+        !self.input.outcomes[c].factors.is_empty() && self.rebuilt_factor(c, 0).is_some()
+    }
+
+    /// The present value of a stream by the second route.
+    fn rebuilt_stream(&self, c: usize, s: usize) -> Option<f64> {
+        let stream = &self.input.appraisal.choices[c].streams[s];
+        let rebuilt = self.rebuilt(c);
+        let multiplier = stream.sign * stream.unit * (1.0 + stream.uplift.value);
+        let mut sum = 0.0;
+        for (i, raw) in stream.raw.iter().enumerate() {
+            sum += raw * rebuilt.factor(i)?;
+        }
+        let mut total = multiplier * sum;
+        if let Some(given) = &stream.residual {
+            let last = rebuilt.factor(stream.raw.len().checked_sub(1)?)?;
+            total += side(stream.kind) * stream.sign * stream.unit * given.value * last;
+        }
+        Some(total + self.input.outcomes[c].streams[s].pv_tail)
+    }
+
+    fn stream(&self, c: usize, s: usize) -> Line {
+        let stream = &self.input.appraisal.choices[c].streams[s];
+        let outcome = &self.input.outcomes[c].streams[s];
+        let at = self.sections[c];
+        let row = self.layout.rows[c].streams[s];
+        let what = match stream.tail {
+            None => format!("PV: {}", stream.name),
+            Some(_) => format!("PV: {} (after the last year: a constant)", stream.name),
+        };
+        let gross: f64 = outcome.pv_by_year.iter().map(|x| x.abs()).sum::<f64>() + outcome.pv_tail.abs();
+        let now = Live::number(table_ref(self.home, self.layout, row, Column::Value), outcome.pv);
+        let table = place(&self.layout.names.discounting, self.layout.cell(row, Column::Value));
+        let mut line = Line::cell(table, what, Live::constant(outcome.pv), Some(now), tolerance(gross));
+        if self.has_route(c)
+            && let Some(value) = self.rebuilt_stream(c, s)
+        {
+            let last = at.streams - 1;
+            let flows = column(col::FLOWS + s as u32, at.years, last);
+            let factors = column(col::REBUILT, at.years, last);
+            let mut text = format!("{}SUMPRODUCT({flows},{factors})", scale(stream, self.home));
+            if let Some(residual) = residual(stream, self.home) {
+                text.push_str(&format!("{residual}*{}", absolute_cell(last, col::REBUILT)));
+            }
+            if stream.tail.is_some() {
+                text.push_str(&format!("+{}", table_ref(self.home, self.layout, row, Column::Tail)));
+            }
+            line.rebuilt = Some(Live::number(text, value));
+        }
+        line
+    }
+
+    /// Costs, benefits, net and the same over the baseline, by the second route.
+    fn rebuilt_sums(&self, c: usize) -> Option<[f64; 3]> {
+        let (mut costs, mut benefits) = (0.0, 0.0);
+        for (s, stream) in self.input.appraisal.choices[c].streams.iter().enumerate() {
+            let pv = self.rebuilt_stream(c, s)?;
+            match stream.kind {
+                StreamKind::Cost => costs += pv,
+                StreamKind::Benefit | StreamKind::Flow => benefits += pv,
+                StreamKind::Damage => benefits -= pv,
+            }
+        }
+        self.has_route(c).then_some([costs, benefits, benefits - costs])
+    }
+
+    fn sums(&self, c: usize, lines: &mut Vec<(u32, Line)>) {
+        let outcome = &self.input.outcomes[c];
+        let at = self.sections[c];
+        let rows = &self.layout.rows[c];
+        let gross: f64 = outcome
+            .streams
+            .iter()
+            .map(|s| s.pv_by_year.iter().map(|x| x.abs()).sum::<f64>() + s.pv_tail.abs())
+            .sum();
+        let mut add = |row: u32, table: u32, what: &str, value: f64, allowed: f64, rebuilt: Option<Live>| {
+            let now = Live::number(table_ref(self.home, self.layout, table, Column::Value), value);
+            let cell = place(&self.layout.names.discounting, self.layout.cell(table, Column::Value));
+            let mut line = Line::cell(cell, what, Live::constant(value), Some(now), allowed);
+            line.rebuilt = rebuilt;
+            lines.push((row, line));
+        };
+        let rebuilt = self.rebuilt_sums(c);
+        let value = |k: usize| rebuilt.map(|r| r[k]);
+        let live = |text: String, value: Option<f64>| value.map(|v| Live::number(text, v));
+        let totals = &outcome.absolute;
+        let sums = rows.absolute;
+        let (costs, benefits) = (absolute_cell(at.sums, col::REBUILT), absolute_cell(at.sums + 1, col::REBUILT));
+        let allowed = tolerance(gross);
+        let text = self.sum_formula(c, true);
+        add(at.sums, sums.costs, "PV: costs", totals.pv_costs, allowed, live(text, value(0)));
+        let text = self.sum_formula(c, false);
+        add(at.sums + 1, sums.benefits, "PV: benefits", totals.pv_benefits, allowed, live(text, value(1)));
+        let text = format!("{benefits}-{costs}");
+        add(at.sums + 2, sums.net, "Net present value", totals.npv, allowed, live(text, value(2)));
+        let mut next = at.sums + 3;
+        if let (Some(over), Some(base), Some(increment)) =
+            (rows.increment, self.input.appraisal.baseline, &outcome.increment)
+        {
+            let base_rebuilt = self.rebuilt_sums(base);
+            let parts = [
+                (over.costs, "PV: costs over the baseline", increment.pv_costs),
+                (over.benefits, "PV: benefits over the baseline", increment.pv_benefits),
+                (over.net, "Net present value over the baseline", increment.npv),
+            ];
+            let other: f64 = self.input.outcomes[base].absolute.pv_costs.abs()
+                + self.input.outcomes[base].absolute.pv_benefits.abs();
+            for (k, (table, what, recorded)) in parts.into_iter().enumerate() {
+                let cell = |section: Section| absolute_cell(section.sums + k as u32, col::REBUILT);
+                let text = format!("{}-{}", cell(at), cell(self.sections[base]));
+                let value = rebuilt.zip(base_rebuilt).map(|(a, b)| a[k] - b[k]);
+                add(next, table, what, recorded, tolerance(gross + other), live(text, value));
+                next += 1;
+            }
+        }
+        let years = outcome.service_years;
+        let what = format!("Sum of factors of service years 1 to {years}");
+        let block = self.rebuilt(c);
+        let text = block.annuity_formula(years).unwrap_or_default();
+        let annuity = live(text, block.annuity(years));
+        add(next, rows.annuity, &what, outcome.annuity, tolerance(outcome.annuity), annuity);
+        if let Some((_, line)) = lines.last_mut() {
+            line.style = Style::Factor;
+        }
+    }
+
+    /// Costs, or benefits and net flows less damages, from the lines of the streams.
+    fn sum_formula(&self, c: usize, costs: bool) -> String {
+        let mut text = String::new();
+        for (s, stream) in self.input.appraisal.choices[c].streams.iter().enumerate() {
+            if (stream.kind == StreamKind::Cost) != costs {
+                continue;
+            }
+            let minus = stream.kind == StreamKind::Damage;
+            if minus || !text.is_empty() {
+                text.push(if minus { '-' } else { '+' });
+            }
+            text.push_str(&absolute_cell(self.sections[c].streams + s as u32, col::REBUILT));
+        }
+        if text.is_empty() { "0".to_owned() } else { text }
+    }
+
+    /// A filled (or compared) cell other than a factor of the years' lines.
+    fn target(&self, c: usize, cell: &TargetCell) -> Line {
+        let choice = &self.input.appraisal.choices[c];
+        let target = &choice.targets[cell.target];
+        let expected = match cell.expected {
+            Some(x) => Live::constant(x),
+            None => Live { formula: String::new(), value: Cached::Text("no number".into()) },
+        };
+        let value = match (cell.filled, cell.expected) {
+            (true, Some(x)) => Cached::Number(x),
+            (true, None) => Cached::Text("text".into()),
+            (false, _) => target.held.get(cell.index).map_or(Cached::None, held),
+        };
+        let value = match value {
+            Cached::Text(_) if cell.filled => self.text_of(c, cell),
+            value => value,
+        };
+        let at = cell.at.range.first;
+        let now = Live { formula: refer_cell(self.home, &cell.at.sheet, at), value };
+        let what = role_words(&target.role);
+        let mut line = Line::cell(place(&cell.at.sheet, at), what, expected, Some(now), cell.tolerance);
+        line.style = match target.role {
+            TargetRole::Factor => Style::Factor,
+            TargetRole::Rates | TargetRole::Irr => Style::Rate,
+            TargetRole::Ratio | TargetRole::Payback => Style::Ratio,
+            _ => Style::Money,
+        };
+        if cell.expected.is_some() {
+            line.rebuilt = self.rebuilt_target(c, cell, &target.role);
+        }
+        line
+    }
+
+    /// The text that was written where a measure has no number.
+    fn text_of(&self, c: usize, cell: &TargetCell) -> Cached {
+        let target = &self.input.appraisal.choices[c].targets[cell.target];
+        let all = crate::formulas::expected(self.input.appraisal, self.input.outcomes, self.layout, c, target);
+        all.into_iter().nth(cell.index).unwrap_or(Cached::None)
+    }
+
+    fn rebuilt_target(&self, c: usize, cell: &TargetCell, role: &TargetRole) -> Option<Live> {
+        let choice = &self.input.appraisal.choices[c];
+        let at = self.sections[c];
+        let i = cell.index;
+        let refer_to = |row: u32| absolute_cell(row, col::REBUILT);
+        let shift = if self.layout.rows[c].increment.is_some() { 3 } else { 0 };
+        let sums = || match (self.layout.rows[c].increment, self.input.appraisal.baseline) {
+            (Some(_), Some(base)) => {
+                let (a, b) = (self.rebuilt_sums(c)?, self.rebuilt_sums(base)?);
+                Some([a[0] - b[0], a[1] - b[1], a[2] - b[2]])
+            }
+            _ => self.rebuilt_sums(c),
+        };
+        let sum_cell = |k: u32| refer_to(at.sums + shift + k);
+        let factor = || {
+            let row = at.years + i as u32;
+            Some((refer_to(row), self.rebuilt_factor(c, i).and_then(|_| self.rebuilt(c).factor(i))?))
+        };
+        let annuity_row = at.sums + 3 + shift;
+        match role {
+            TargetRole::Factor => factor().map(|(text, value)| Live::number(text, value)),
+            TargetRole::Rates => self.rebuilt_rate(c, i),
+            TargetRole::PvByYear(name) => {
+                let (factor_cell, d) = factor()?;
+                let mut text = String::new();
+                let mut value = 0.0;
+                for (s, stream) in choice.streams.iter().enumerate() {
+                    let sign = match name {
+                        Some(name) if find(choice, name) != Some(s) => continue,
+                        Some(_) => 1.0,
+                        None => side(stream.kind),
+                    };
+                    let flow = absolute_cell(at.years + i as u32, col::FLOWS + s as u32);
+                    text.push_str(if sign < 0.0 { "-" } else { "+" });
+                    let mut flow = format!("{}{flow}", scale(stream, self.home));
+                    let mut x = stream.sign * stream.unit * (1.0 + stream.uplift.value) * stream.raw[i];
+                    if i + 1 == stream.raw.len()
+                        && let (Some(more), Some(given)) = (residual(stream, self.home), &stream.residual)
+                    {
+                        flow.push_str(&more);
+                        x += side(stream.kind) * stream.sign * stream.unit * given.value;
+                    }
+                    text.push_str(&format!("({flow})"));
+                    value += sign * x;
+                }
+                let text = format!("({})*{factor_cell}", text.trim_start_matches('+'));
+                (text.len() <= MAX_FORMULA && text.len() > 6).then(|| Live::number(text, value * d))
+            }
+            TargetRole::PvTotal(Some(name)) => {
+                let s = find(choice, name)?;
+                let value = self.has_route(c).then(|| self.rebuilt_stream(c, s))??;
+                Some(Live::number(refer_to(at.streams + s as u32), value))
+            }
+            TargetRole::PvTotal(None) => Some(Live::number(refer_to(at.sums + 2), self.rebuilt_sums(c)?[2])),
+            TargetRole::PvCosts => Some(Live::number(sum_cell(0), sums()?[0])),
+            TargetRole::PvBenefits => Some(Live::number(sum_cell(1), sums()?[1])),
+            TargetRole::Npv => Some(Live::number(sum_cell(2), sums()?[2])),
+            TargetRole::Ratio => {
+                let sums = sums()?;
+                Some(Live::number(format!("{}/{}", sum_cell(1), sum_cell(0)), sums[1] / sums[0]))
+            }
+            TargetRole::Annual => {
+                let annuity = self.rebuilt(c).annuity(self.input.outcomes[c].service_years)?;
+                Some(Live::number(format!("{}/{}", sum_cell(2), refer_to(annuity_row)), sums()?[2] / annuity))
+            }
+            TargetRole::Irr | TargetRole::Payback => None,
+        }
+    }
+
+    /// The forward rate of a year, D(t-1)/D(t) - 1, where its offset is 1 or more.
+    fn rebuilt_rate(&self, c: usize, i: usize) -> Option<Live> {
+        let rebuilt = self.rebuilt(c);
+        let t = rebuilt.offsets[i];
+        let route = rebuilt.route.as_ref().filter(|_| !rebuilt.averaged && t >= 1.0)?;
+        let cell = absolute_cell(self.sections[c].years + i as u32, col::OFFSET);
+        let (before, at) = (rebuilt.formula(&format!("({cell}-1)"))?, rebuilt.formula(&cell)?);
+        let text = format!("({before})/({at})-1");
+        (text.len() <= MAX_FORMULA).then(|| Live::number(text, route.factor(t - 1.0) / route.factor(t) - 1.0))
+    }
+}
+
+/// The live counts of checks and of those that differ.
+pub(super) fn counts(results: Range, home: &str, sheet: &str) -> (String, String) {
+    let cells = refer(home, &SheetRange { sheet: sheet.to_owned(), range: results });
+    let count = |text: &str| format!("COUNTIF({cells},\"{text}\")");
+    (format!("{}+{}", count(AGREES), count(DIFFERS)), count(DIFFERS))
+}
+
+/// A role in words.
+pub(super) fn role_words(role: &TargetRole) -> String {
+    match role {
+        TargetRole::Factor => "factor".into(),
+        TargetRole::PvByYear(None) => "PV by year: net".into(),
+        TargetRole::PvByYear(Some(name)) => format!("PV by year: {name}"),
+        TargetRole::PvTotal(None) => "PV: net".into(),
+        TargetRole::PvTotal(Some(name)) => format!("PV: {name}"),
+        TargetRole::PvCosts => "PV: costs".into(),
+        TargetRole::PvBenefits => "PV: benefits".into(),
+        TargetRole::Npv => "net present value".into(),
+        TargetRole::Ratio => "benefit-cost ratio".into(),
+        TargetRole::Annual => "annual equivalent".into(),
+        TargetRole::Irr => "internal rate of return".into(),
+        TargetRole::Payback => "discounted payback".into(),
+        TargetRole::Rates => "yearly rate".into(),
+    }
+}
+
+fn held(held: &Held) -> Cached {
+    match held {
+        Held::Number(x) | Held::Formula { value: Some(x), .. } => Cached::Number(*x),
+        Held::Text(text) => Cached::Text(text.clone()),
+        Held::Blank | Held::Error(_) | Held::Formula { value: None, .. } => Cached::None,
+    }
+}
+
+fn tolerance(gross: f64) -> f64 {
+    // Never nothing: a stream of zeros must agree with itself.
+    (crate::formulas::FACTOR_TOLERANCE * gross).max(1e-12)
+}
+
+fn place(sheet: &str, cell: Cell) -> String {
+    format!("{}!{cell}", quote_sheet(sheet))
+}
+
+fn absolute_cell(row: u32, col: u32) -> String {
+    absolute(Range { first: Cell { row, col }, last: Cell { row, col } })
+}
+
+fn column(col: u32, first: u32, last: u32) -> String {
+    absolute(Range { first: Cell { row: first, col }, last: Cell { row: last, col } })
+}

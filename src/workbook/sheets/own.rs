@@ -1,0 +1,107 @@
+//! hence's sheets by name: how they are chosen, and how a later fill recognises them.
+
+use sha2::{Digest, Sha256};
+
+use super::SheetNames;
+use crate::references::{Cell, quote_sheet};
+use crate::writer::{Content, Sheet};
+
+/// The sheet-scoped hidden name that marks a sheet as hence's own and spans what hence wrote on it.
+pub const OWN: &str = "hence_own";
+/// The name of the verdict cell.
+pub const VERDICT: &str = "hence_verdict";
+
+/// A defined name that goes with hence's sheets.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct OwnName {
+    /// The name.
+    pub name: String,
+    /// The visible name of the sheet it is scoped to; none for the workbook.
+    pub scope_sheet: Option<String>,
+    /// What it refers to, without the equals sign.
+    pub text: String,
+    /// Whether spreadsheet programs list it.
+    pub hidden: bool,
+    /// Its comment; for [`OWN`] the [`digest`] of the sheet's texts.
+    pub comment: Option<String>,
+}
+
+impl SheetNames {
+    /// Names that clash with no sheet of the workbook, whatever the case: `Discounting`, or
+    /// `Discounting 2` and so on.
+    pub fn choose(existing: &[String]) -> Self {
+        let taken: Vec<String> = existing.iter().map(|name| name.to_lowercase()).collect();
+        let free = |wanted: &str| {
+            let mut name = wanted.to_owned();
+            let mut n = 2;
+            while taken.contains(&name.to_lowercase()) {
+                name = format!("{wanted} {n}");
+                n += 1;
+            }
+            name
+        };
+        SheetNames {
+            discounting: free("Discounting"),
+            summary: free("Audit summary"),
+            coverage: free("Audit coverage"),
+            checks: free("Audit checks"),
+            changes: free("Audit changes"),
+            charts: free("Audit charts"),
+        }
+    }
+}
+
+/// SHA-256, in lower-case hexadecimal, over the text cells of a sheet: reference, tab, text, line feed,
+/// in order of row and column. Formulas and numbers are left out, and so are cells outside the range
+/// that [`OWN`] spans.
+pub fn digest(cells: &[(Cell, String)]) -> String {
+    let mut sorted: Vec<&(Cell, String)> = cells.iter().collect();
+    sorted.sort();
+    let mut hash = Sha256::new();
+    for (cell, text) in sorted {
+        hash.update(format!("{cell}\t{text}\n"));
+    }
+    hash.finalize().iter().map(|byte| format!("{byte:02x}")).collect()
+}
+
+/// The mark of ownership of one sheet. To be taken before notes of a person are put back, so that they
+/// stand outside of what hence calls its own. (Print titles come with the package.)
+pub(super) fn mark(sheet: &Sheet) -> OwnName {
+    let texts: Vec<(Cell, String)> = sheet
+        .cells()
+        .filter_map(|(cell, content)| match content {
+            Content::Text(text) => Some((cell, text.clone())),
+            _ => None,
+        })
+        .collect();
+    let range = crate::formulas::absolute(sheet.used());
+    OwnName {
+        name: OWN.to_owned(),
+        scope_sheet: Some(sheet.name.clone()),
+        text: format!("{}!{range}", quote_sheet(&sheet.name)),
+        hidden: true,
+        comment: Some(digest(&texts)),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn names_clash_with_nothing_whatever_the_case() {
+        let names = SheetNames::choose(&["discounting".into(), "DISCOUNTING 2".into(), "Data".into()]);
+        assert_eq!(names.discounting, "Discounting 3");
+        assert_eq!(names.summary, "Audit summary");
+    }
+
+    #[test]
+    fn the_digest_does_not_depend_on_the_order_of_cells() {
+        let a = (Cell { row: 0, col: 0 }, "x".to_owned());
+        let b = (Cell { row: 0, col: 1 }, "y".to_owned());
+        assert_eq!(digest(&[a.clone(), b.clone()]), digest(&[b.clone(), a.clone()]));
+        assert_ne!(digest(&[a.clone(), b]), digest(&[a]));
+        // SHA-256 of nothing, FIPS 180-4 test vector.
+        assert_eq!(digest(&[]), "e3b0c44298fc1c149afbf4c8996fb92427ae41e4649b934ca495991b7852b855");
+    }
+}

@@ -1,0 +1,388 @@
+//! The summary sheet: the verdict, what was done from what, the basis, the results and every check.
+
+use hence_core::Eras;
+
+use super::checks::{Checks, counts};
+use super::coverage::{Coverage, places};
+use super::discounting::table_ref;
+use super::lines::DIFFERS;
+use super::{AuditInput, charts::era_words};
+use crate::appraisal::{StreamKind, TargetRole};
+use crate::formulas::{no_ratio, one, refer};
+use crate::layout::{Column, Layout};
+use crate::patch::Cached;
+use crate::references::{Cell, Range, SheetRange};
+use crate::writer::{Sheet, Style};
+
+/// The verdict where everything agrees.
+pub const VERDICT_AGREES: &str = "arithmetic agrees with the declared basis";
+
+/// Rows of the verdict and the counts.
+const VERDICT: u32 = 2;
+const COUNT: u32 = 3;
+const COUNT_DIFFERS: u32 = 4;
+/// Columns that paragraphs span.
+const LAST: u32 = 6;
+
+/// The summary sheet and its verdict.
+pub(super) struct Summary {
+    /// The sheet.
+    pub sheet: Sheet,
+    /// The verdict as evaluated here.
+    pub verdict: String,
+    /// The verdict's cell.
+    pub cell: Cell,
+}
+
+/// Makes the sheet.
+pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout, checks: &Checks, coverage: &Coverage) -> Summary {
+    let mut sheet = Sheet::new(&input.names.summary);
+    let options = input.appraisal.choices.len() as u32;
+    sheet.columns(0, 0, 38.0);
+    sheet.columns(1, options.max(LAST), 18.0);
+    sheet.text(0, 0, Style::Title, "Audit summary");
+    let verdict = verdict(&mut sheet, input, checks, coverage);
+    let mut page = Page { sheet, row: COUNT_DIFFERS + 2 };
+    page.from_what(input);
+    page.basis(input, layout);
+    page.results(input, layout);
+    page.checks(input, checks, coverage);
+    page.warnings(input, layout);
+    page.list("What differs in the file by design", input.differs);
+    page.sheet.text(page.row, 0, Style::Section, "Notes of the reviewer (type below; kept at the next fill)");
+    page.sheet.freeze(VERDICT + 1, 0);
+    page.sheet.repeat(0, VERDICT);
+    Summary { sheet: page.sheet, verdict, cell: Cell { row: VERDICT, col: 1 } }
+}
+
+fn verdict(sheet: &mut Sheet, input: &AuditInput<'_>, checks: &Checks, coverage: &Coverage) -> String {
+    let home = sheet.name.clone();
+    let (all, differs) = counts(checks.results, &home, &input.names.checks);
+    let (ties, apart) = counts(coverage.results, &home, &input.names.coverage);
+    let cell = |row| Cell { row, col: 1 }.to_string();
+    let total = checks.count + coverage.valued;
+    let wrong = checks.differing.len();
+    sheet.text(COUNT, 0, Style::Text, "Checks and ties of totals");
+    sheet.formula(COUNT, 1, Style::Year, format!("{all}+{ties}"), Cached::Number(total as f64));
+    sheet.text(COUNT_DIFFERS, 0, Style::Text, "of which differ");
+    sheet.formula(COUNT_DIFFERS, 1, Style::Year, format!("{differs}+{apart}"), Cached::Number(wrong as f64));
+    let text = match checks.differing.first() {
+        None => VERDICT_AGREES.to_owned(),
+        Some(first) => format!("{DIFFERS}: {wrong} of {total} checks, first at {first}"),
+    };
+    let results = |name: &str, range| refer(&home, &SheetRange { sheet: name.to_owned(), range });
+    let first = |results: String, places: String| format!("INDEX({places},MATCH(\"{DIFFERS}\",{results},0))");
+    let of_checks = first(
+        results(&input.names.checks, checks.results),
+        places(checks.results, &home, &input.names.checks),
+    );
+    let of_coverage = first(
+        results(&input.names.coverage, coverage.results),
+        places(coverage.results, &home, &input.names.coverage),
+    );
+    let formula = format!(
+        "IF({n}=0,\"{VERDICT_AGREES}\",\"{DIFFERS}: \"&{n}&\" of \"&{m}&\" checks, first at \"\
+         &IFERROR({of_checks},{of_coverage}))",
+        n = cell(COUNT_DIFFERS),
+        m = cell(COUNT),
+    );
+    sheet.text(VERDICT, 0, Style::Verdict, "Verdict");
+    sheet.formula(VERDICT, 1, Style::Verdict, formula, Cached::Text(text.clone()));
+    text
+}
+
+/// The sheet with the next free row.
+struct Page {
+    sheet: Sheet,
+    row: u32,
+}
+
+impl Page {
+    fn section(&mut self, text: &str) {
+        self.sheet.text(self.row, 0, Style::Section, text);
+        self.row += 1;
+    }
+
+    fn pair(&mut self, label: &str, text: &str) {
+        if !text.is_empty() {
+            self.sheet.text(self.row, 0, Style::Wrapped, label);
+            self.sheet.paragraph(self.row, 1, LAST, Style::Wrapped, text);
+            self.row += 1;
+        }
+    }
+
+    fn list(&mut self, title: &str, texts: &[String]) {
+        if texts.is_empty() {
+            return;
+        }
+        self.section(title);
+        for text in texts {
+            self.sheet.paragraph(self.row, 0, LAST, Style::Wrapped, text);
+            self.row += 1;
+        }
+        self.row += 1;
+    }
+
+    fn from_what(&mut self, input: &AuditInput<'_>) {
+        let meta = input.meta;
+        self.section("What, from what");
+        self.pair("Workbook", &meta.input_name);
+        self.pair("SHA-256 of the workbook", &meta.input_sha256);
+        self.pair("SHA-256 of the basis texts", &meta.basis_sha256);
+        self.pair("Made by", &format!("hence {}", meta.version));
+        self.pair("As of", meta.as_of.as_deref().unwrap_or(""));
+        self.pair("By", meta.by.as_deref().unwrap_or(""));
+        let how = if meta.formulas { "live formulas with their results" } else { "plain numbers" };
+        self.pair("Cells were filled with", how);
+        self.row += 1;
+    }
+
+    fn basis(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+        for block in &layout.blocks {
+            let choice = &input.appraisal.choices[block.choice];
+            let outcome = &input.outcomes[block.choice];
+            let names: Vec<&str> =
+                block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
+            self.section(&format!("Basis of {}", names.join(", ")));
+            self.pair("Basis", &format!("{} (from {})", outcome.basis.canonical(), choice.basis.from));
+            self.pair("In words, with its source", &outcome.basis.words());
+            self.pair("Base", &format!("{} (from {})", outcome.base_words, choice.base.from));
+            self.pair("Timing", &outcome.timing_sentence);
+            self.row += 1;
+        }
+        self.sheet.paragraph(self.row, 0, LAST, Style::Strong, super::CAUTION);
+        self.row += 2;
+    }
+
+    fn results(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+        self.section("Results");
+        self.sheet.text(self.row, 0, Style::Heading, "Measure");
+        for (c, choice) in input.appraisal.choices.iter().enumerate() {
+            self.sheet.text(self.row, c as u32 + 1, Style::Heading, &choice.name);
+        }
+        self.row += 1;
+        self.totals(input, layout);
+        self.measures(input, layout);
+        self.row += 1;
+        for choice in &input.appraisal.choices {
+            let names = |wanted: &[StreamKind]| {
+                let names: Vec<&str> = choice
+                    .streams
+                    .iter()
+                    .filter(|s| wanted.contains(&s.kind))
+                    .map(|s| s.name.as_str())
+                    .collect();
+                if names.is_empty() { "nothing".to_owned() } else { names.join(", ") }
+            };
+            let mut text = format!(
+                "above the line {}; below the line {}",
+                names(&[StreamKind::Benefit, StreamKind::Flow, StreamKind::Damage]),
+                names(&[StreamKind::Cost]),
+            );
+            if !choice.budget.is_empty() {
+                text.push_str(&format!("; constrained cost {}", choice.budget.join(", ")));
+            }
+            self.pair(&format!("Ratio of {}", choice.name), &text);
+        }
+        if let Some(baseline) = input.appraisal.baseline {
+            let name = &input.appraisal.choices[baseline].name;
+            let text = format!("{name}; ratio, annual equivalent, rates of return and payback use increments");
+            self.pair("Baseline", &text);
+        }
+        self.row += 1;
+    }
+
+    fn totals(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+        type Pick = fn(&crate::layout::ChoiceRows) -> Option<u32>;
+        let rows: [(&str, Column, Pick); 12] = [
+            ("Undiscounted costs", Column::Undiscounted, |r| Some(r.absolute.costs)),
+            ("Undiscounted benefits", Column::Undiscounted, |r| Some(r.absolute.benefits)),
+            ("Undiscounted net", Column::Undiscounted, |r| Some(r.absolute.net)),
+            ("Present value of costs", Column::Value, |r| Some(r.absolute.costs)),
+            ("Present value of benefits", Column::Value, |r| Some(r.absolute.benefits)),
+            ("Net present value", Column::Value, |r| Some(r.absolute.net)),
+            ("Present value of costs over the baseline", Column::Value, |r| Some(r.increment?.costs)),
+            ("Present value of benefits over the baseline", Column::Value, |r| Some(r.increment?.benefits)),
+            ("Net present value over the baseline", Column::Value, |r| Some(r.increment?.net)),
+            ("Benefit-cost ratio", Column::Value, |r| Some(r.ratio)),
+            ("Annual equivalent", Column::Value, |r| Some(r.annual)),
+            ("Sum of factors of the service years", Column::Value, |r| Some(r.annuity)),
+        ];
+        let home = self.sheet.name.clone();
+        for (k, (label, column, pick)) in rows.into_iter().enumerate() {
+            let found: Vec<Option<u32>> = layout.rows.iter().map(pick).collect();
+            if found.iter().all(Option::is_none) {
+                continue;
+            }
+            self.sheet.text(self.row, 0, Style::Wrapped, label);
+            for (c, row) in found.into_iter().enumerate() {
+                let Some(row) = row else { continue };
+                let style = match k {
+                    9 => Style::Ratio,
+                    11 => Style::Factor,
+                    _ => Style::Money,
+                };
+                let text = table_ref(&home, layout, row, column);
+                let result = table_value(input, k, c);
+                let style = if matches!(result, Cached::Text(_)) { Style::Wrapped } else { style };
+                self.sheet.formula(self.row, c as u32 + 1, style, text, result);
+            }
+            self.row += 1;
+        }
+    }
+
+    fn measures(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+        let each = |page: &mut Page, label: &str, put: &dyn Fn(&mut Sheet, u32, u32, usize)| {
+            page.sheet.text(page.row, 0, Style::Wrapped, label);
+            for c in 0..input.outcomes.len() {
+                put(&mut page.sheet, page.row, c as u32 + 1, c);
+            }
+            page.row += 1;
+        };
+        let years = |sheet: &mut Sheet, row, col, value: Option<f64>, none: &str| match value {
+            Some(x) => sheet.number(row, col, Style::Ratio, x),
+            None => sheet.text(row, col, Style::Wrapped, none),
+        };
+        each(self, "Service years N of the annual equivalent", &|sheet, row, col, c| {
+            sheet.number(row, col, Style::Year, f64::from(input.outcomes[c].service_years));
+        });
+        each(self, "Discounted payback (years, first crossing)", &|sheet, row, col, c| {
+            years(sheet, row, col, input.outcomes[c].payback.first, "none");
+        });
+        each(self, "Discounted payback (years, last crossing)", &|sheet, row, col, c| {
+            years(sheet, row, col, input.outcomes[c].payback.last, "none");
+        });
+        each(self, "Internal rates of return", &|sheet, row, col, c| {
+            let rates: Vec<String> =
+                input.outcomes[c].irr.iter().map(|r| format!("{:.4}%", r * 100.0)).collect();
+            let text = if rates.is_empty() { crate::formulas::NO_IRR.to_owned() } else { rates.join("; ") };
+            sheet.text(row, col, Style::Wrapped, text);
+        });
+        each(self, "Mean time of gross present value (years)", &|sheet, row, col, c| {
+            years(sheet, row, col, input.outcomes[c].mean_time, "none");
+        });
+        let edges = Eras::default().0;
+        for k in 0..=edges.len() {
+            let label = format!("Share of gross present value {}", era_words(&edges, k));
+            each(self, &label, &|sheet, row, col, c| {
+                if let Some(&share) = input.outcomes[c].era_shares.get(k) {
+                    sheet.number(row, col, Style::Share, share);
+                }
+            });
+        }
+        if input.outcomes.iter().any(|o| o.npv_per_budget.is_some()) {
+            each(self, "Net present value per unit of constrained cost", &|sheet, row, col, c| {
+                years(sheet, row, col, input.outcomes[c].npv_per_budget, "none");
+            });
+        }
+        self.effects(input);
+        let lives: Vec<u32> = input.outcomes.iter().map(|o| o.service_years).collect();
+        let declining = layout.blocks.iter().any(|b| {
+            let rates: Vec<f64> = input.outcomes[b.choice].forward.iter().copied().flatten().collect();
+            rates.windows(2).any(|pair| pair[1] < pair[0] - 1e-9)
+        });
+        if declining && lives.windows(2).any(|pair| pair[0] != pair[1]) {
+            let text = "Annual equivalents of unequal lives are not comparable under a declining rate.";
+            self.sheet.paragraph(self.row, 0, LAST, Style::Strong, text);
+            self.row += 1;
+        }
+    }
+
+    fn effects(&mut self, input: &AuditInput<'_>) {
+        for (c, choice) in input.appraisal.choices.iter().enumerate() {
+            for (effect, (plain, discounted)) in choice.effects.iter().zip(&input.outcomes[c].effects) {
+                for (words, value) in [("undiscounted", plain), ("discounted", discounted)] {
+                    let Some(x) = value else { continue };
+                    let label = format!("Net cost per unit of {} ({words})", effect.name);
+                    self.sheet.text(self.row, 0, Style::Wrapped, label);
+                    self.sheet.number(self.row, c as u32 + 1, Style::Ratio, *x);
+                    self.row += 1;
+                }
+            }
+        }
+    }
+
+    fn checks(&mut self, input: &AuditInput<'_>, checks: &Checks, coverage: &Coverage) {
+        self.section("Checks and their tolerances");
+        for (i, heading) in ["Check", "Number", "Allowed difference"].iter().enumerate() {
+            self.sheet.text(self.row, i as u32, Style::Heading, heading);
+        }
+        self.row += 1;
+        let factors: usize = input.outcomes.iter().map(|o| o.factors.len()).sum();
+        let in_lines = input.cells.iter().filter(|cell| is_factor(input, cell)).count();
+        let cells = input.cells.len() - in_lines;
+        let rest = checks.count.saturating_sub(factors + cells);
+        for (label, number, allowed) in [
+            ("Factors: second route, Discounting, filled cells", factors, "1e-9 relative"),
+            (
+                "Present values and totals on Discounting",
+                rest,
+                "1e-9 of the gross present value",
+            ),
+            ("Other filled or compared cells", cells, "half of the last displayed unit, or 1e-9"),
+            ("Undiscounted totals of valued rows", coverage.valued, "1e-9 relative, or 0.000001"),
+        ] {
+            self.sheet.text(self.row, 0, Style::Wrapped, label);
+            self.sheet.number(self.row, 1, Style::Year, number as f64);
+            self.sheet.paragraph(self.row, 2, LAST, Style::Wrapped, allowed);
+            self.row += 1;
+        }
+        let text = format!(
+            "{} of {} checks have an independent second route, on the sheet {}; each cell's own tolerance stands there.",
+            checks.independent, checks.count, input.names.checks
+        );
+        self.sheet.paragraph(self.row, 0, LAST, Style::Wrapped, text);
+        self.row += 2;
+    }
+
+    fn warnings(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+        let mut texts: Vec<String> = Vec::new();
+        for block in &layout.blocks {
+            texts.extend(input.outcomes[block.choice].basis.warnings());
+            texts.extend(input.outcomes[block.choice].curve.warnings());
+        }
+        for problem in input.problems {
+            let hint = problem.hint.as_ref().map(|hint| format!(" Try: {hint}")).unwrap_or_default();
+            texts.push(format!("{problem}{hint}"));
+        }
+        let mut seen = std::collections::BTreeSet::new();
+        texts.retain(|text| seen.insert(text.clone()));
+        if texts.is_empty() {
+            texts.push("None.".to_owned());
+        }
+        self.list("Warnings", &texts);
+    }
+}
+
+fn is_factor(input: &AuditInput<'_>, cell: &super::TargetCell) -> bool {
+    let choice = &input.appraisal.choices[cell.choice];
+    let rows = input.outcomes[cell.choice].factors.len();
+    let first = choice.targets.iter().position(|t| t.role == TargetRole::Factor && t.held.len() == rows);
+    first == Some(cell.target)
+}
+
+fn table_value(input: &AuditInput<'_>, k: usize, c: usize) -> Cached {
+    let outcome = &input.outcomes[c];
+    let (a, i) = (&outcome.absolute, outcome.increment.unwrap_or_default());
+    let text_or = |value: Option<f64>, text: &str| value.map_or(Cached::Text(text.into()), Cached::Number);
+    Cached::Number(match k {
+        0 => a.costs,
+        1 => a.benefits,
+        2 => a.benefits - a.costs,
+        3 => a.pv_costs,
+        4 => a.pv_benefits,
+        5 => a.npv,
+        6 => i.pv_costs,
+        7 => i.pv_benefits,
+        8 => i.npv,
+        9 => return text_or(outcome.totals().ratio, no_ratio(outcome)),
+        10 => return text_or(outcome.totals().annual, crate::formulas::NO_ANNUAL),
+        _ => outcome.annuity,
+    })
+}
+
+/// The verdict cell as the text of its defined name.
+pub(super) fn verdict_text(sheet: &str, cell: Cell) -> String {
+    let range: Range = one(cell);
+    refer("", &SheetRange { sheet: sheet.to_owned(), range })
+}
