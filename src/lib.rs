@@ -9,12 +9,14 @@
 mod basis;
 mod calendar;
 mod catalogue;
+mod check;
 mod curve;
 mod dd;
 mod error;
 mod evidence;
 mod irr;
 mod measures;
+mod perpetuity;
 mod prices;
 mod rateline;
 mod schedule;
@@ -24,20 +26,21 @@ mod tail;
 mod timing;
 
 pub use basis::{Basis, CAUTION, PriceBasis};
-pub use calendar::{DayCount, offset_of_dates, parse_financial_year};
+pub use calendar::{DayCount, offset_of_dates, parse_financial_year, years_after_base};
 pub use catalogue::Catalogue;
 pub use curve::{Curve, Domain, Parts};
 pub use error::{Error, ErrorKind, Result};
 pub use evidence::{elasticity_from_taxes, equity_weight, ramsey_rate};
-pub use irr::{IrrSearch, internal_rates};
+pub use irr::{IRR_INTERVAL, IrrSearch, internal_rates};
 pub use measures::{
-    Eras, Payback, annual_equivalent, benefit_cost_ratio, discounted_payback, era_shares, mean_time,
-    net_present_value, present_value, present_values,
+    Eras, Increment, Payback, annual_equivalent, benefit_cost_ratio, cost_per_effect, discounted_payback,
+    era_shares, incremental_ratios, mean_time, net_present_value, npv_per_budget, present_value,
+    present_values, undiscounted_total,
 };
-pub use prices::{nominal_rate, real_flows, real_rate};
+pub use prices::{nominal_rate, real_flows, real_flows_by_inflation, real_rate};
 pub use rateline::{RateLine, percent};
 pub use schedule::{Schedule, ScheduleStatus};
 pub use spec::{Band, Compounding, Edge, HorizonRule, Spec, Where};
 pub use sum::{ExactSum, dot, sum};
 pub use tail::Tail;
-pub use timing::{Position, Timing};
+pub use timing::{Position, TimedOffset, Timing, timing_sentence};
