@@ -5,10 +5,19 @@
 
 pub mod appraisal;
 pub mod formulas;
+pub mod graft;
 pub mod layout;
+pub mod model;
+pub mod names_edit;
 pub mod outcome;
+pub mod package;
 pub mod patch;
+pub mod preflight;
 pub mod problem;
 pub mod references;
 pub mod sheets;
+mod splice;
+pub mod styles;
+pub mod verify;
 pub mod writer;
+pub mod xml;

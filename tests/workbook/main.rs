@@ -1,3 +1,6 @@
 //! Tests of the workbook crate.
 mod formulas;
+mod graft;
+mod package;
+mod patch;
 mod scenario;

@@ -1,0 +1,274 @@
+//! A workbook file as a package of parts: a bounded zip, opened read-only, rewritten without touching
+//! what does not change.
+
+use std::collections::BTreeMap;
+use std::io::Read;
+use std::path::Path;
+
+use crate::problem::{Place, Problem, Result, WorkbookError};
+
+mod container;
+mod edit;
+mod output;
+mod parts;
+mod sniff;
+
+pub use container::{MAX_ENTRIES, MAX_FILE, MAX_PART, MAX_RATIO, MAX_TOTAL, RATIO_FROM};
+pub use edit::{NewRelationship, edit_content_types, edit_relationships};
+pub use output::{Changes, same_file, write_atomically};
+pub use parts::{Relationship, relationships_part, resolve_target};
+
+pub(crate) use container::Inflated;
+
+use container::Entry;
+use parts::{ContentTypes, is_strict_kind, read_relationships};
+
+/// The kind of workbook, by the content type of its main part.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Format {
+    /// Without macros.
+    Xlsx,
+    /// With macros.
+    Xlsm,
+}
+
+impl Format {
+    /// The extension that goes with it, without the dot.
+    pub fn extension(self) -> &'static str {
+        match self {
+            Format::Xlsx => "xlsx",
+            Format::Xlsm => "xlsm",
+        }
+    }
+}
+
+/// A workbook file in memory. Part names are matched without regard to case, as the format wants.
+pub struct Package {
+    name: String,
+    bytes: Vec<u8>,
+    entries: Vec<Entry>,
+    /// From a part's key to its entry.
+    index: BTreeMap<String, usize>,
+    types: ContentTypes,
+    workbook: String,
+    format: Format,
+    strict: bool,
+}
+
+/// A part name as it is compared: lower case, forward slashes, no leading slash.
+fn key(name: &str) -> String {
+    name.trim_start_matches(['/', '\\']).replace('\\', "/").to_lowercase()
+}
+
+impl Package {
+    /// Reads a workbook file into memory and finds its parts. The file is opened for reading only.
+    ///
+    /// **Errors**: `cannot-read`, `file-too-large`, and those of [`Package::from_bytes`].
+    pub fn open(path: &Path) -> Result<Package> {
+        let name = path.file_name().unwrap_or(path.as_os_str()).to_string_lossy().into_owned();
+        let failed = |e: std::io::Error| -> WorkbookError {
+            Problem::error("cannot-read", Place::default(), format!("{} cannot be read: {e}", path.display()))
+                .into()
+        };
+        let file = std::fs::File::open(path).map_err(failed)?;
+        let mut bytes = Vec::new();
+        // One byte more than allowed tells a file that is too large, whatever its length claims.
+        file.take(MAX_FILE + 1).read_to_end(&mut bytes).map_err(failed)?;
+        Package::from_bytes(&name, bytes)
+    }
+
+    /// A package from the bytes of a file; `name` is the file's name, without folders.
+    ///
+    /// **Errors**: `file-too-large`, `empty-file`, `password-protected`, `old-format`, `other-format`,
+    /// `template`, `not-a-package`, `not-a-workbook`, `truncated`, `damaged-zip`, `zip-bomb`,
+    /// `encrypted-entry`, `duplicate-entry`, and those of reading XML.
+    pub fn from_bytes(name: &str, bytes: Vec<u8>) -> Result<Package> {
+        if bytes.len() as u64 > MAX_FILE {
+            return Err(Problem::error(
+                "file-too-large",
+                Place::default(),
+                format!("{name} is larger than {} MB, the most that is read", MAX_FILE >> 20),
+            )
+            .hint("split the workbook, or delete sheets that the appraisal does not need")
+            .into());
+        }
+        sniff::check_zip(name, &bytes)?;
+        let entries = container::entries(&bytes)?;
+        let mut index = BTreeMap::new();
+        for (i, entry) in entries.iter().enumerate() {
+            if let Some(j) = index.insert(key(&entry.name), i) {
+                let (a, b): (&Entry, &Entry) = (&entries[j], entry);
+                return Err(Problem::error(
+                    "duplicate-entry",
+                    Place::default(),
+                    format!("the file holds two entries of one name: {} and {}", a.name, b.name),
+                )
+                .hint("open the file in a spreadsheet program and save it again")
+                .into());
+            }
+        }
+        let mut package = Package {
+            name: name.to_owned(),
+            bytes,
+            entries,
+            index,
+            types: ContentTypes::default(),
+            workbook: String::new(),
+            format: Format::Xlsx,
+            strict: false,
+        };
+        package.find_workbook()?;
+        Ok(package)
+    }
+
+    fn find_workbook(&mut self) -> Result<()> {
+        let Some(types) = self.part("[Content_Types].xml")? else {
+            return Err(sniff::other_package(self));
+        };
+        self.types = ContentTypes::read(&types)?;
+        let mut links = self.relationships("")?;
+        links.retain(|link| link.kind.ends_with("/officeDocument"));
+        let main = links.pop().filter(|link| !link.external);
+        let main = main.ok_or_else(|| not_a_workbook("its main part is not named"))?;
+        if !links.is_empty() {
+            return Err(not_a_workbook("it names more than one main part"));
+        }
+        if !self.has(&main.target) {
+            return Err(not_a_workbook(&format!("its main part {} is missing", main.target)));
+        }
+        self.format = sniff::format_of(&self.content_type(&main.target).unwrap_or_default())?;
+        self.strict = is_strict_kind(&main.kind);
+        self.workbook = main.target;
+        Ok(())
+    }
+
+    /// The file's name, without folders.
+    pub fn file_name(&self) -> &str {
+        &self.name
+    }
+
+    /// The whole file as it was read.
+    pub fn bytes(&self) -> &[u8] {
+        &self.bytes
+    }
+
+    /// What kind of workbook it is; the output's extension follows it.
+    pub fn format(&self) -> Format {
+        self.format
+    }
+
+    /// The names of the parts in the file's order: as stored, but without a leading slash and with
+    /// backslashes turned into slashes.
+    pub fn parts(&self) -> impl Iterator<Item = &str> {
+        self.entries.iter().map(|entry| entry.part.as_str()).filter(|name| !name.ends_with('/'))
+    }
+
+    /// The names of all entries of the zip file exactly as stored, folders too.
+    pub fn entry_names(&self) -> impl Iterator<Item = &str> {
+        self.entries.iter().map(|entry| entry.name.as_str())
+    }
+
+    /// Whether there is a part of that name.
+    pub fn has(&self, name: &str) -> bool {
+        self.index.contains_key(&key(name))
+    }
+
+    /// The bytes of a part, or none if there is no such part.
+    ///
+    /// **Errors**: `damaged-zip` where the bytes are not of the stated size and checksum.
+    pub fn part(&self, name: &str) -> Result<Option<Vec<u8>>> {
+        self.entry(name).map(|entry| entry.read(&self.bytes)).transpose()
+    }
+
+    /// A reader of a part's bytes, for parts that need not be held whole.
+    pub(crate) fn part_reader(&self, name: &str) -> Result<Option<Inflated<'_>>> {
+        self.entry(name).map(|entry| entry.reader(&self.bytes)).transpose()
+    }
+
+    /// The size of a part in bytes as the directory states it.
+    pub fn part_size(&self, name: &str) -> Option<u64> {
+        self.entry(name).map(Entry::size)
+    }
+
+    fn entry(&self, name: &str) -> Option<&Entry> {
+        self.index.get(&key(name)).map(|&i| &self.entries[i])
+    }
+
+    /// The content type of a part: its own, else that of its extension.
+    pub fn content_type(&self, name: &str) -> Option<String> {
+        self.types.of(name)
+    }
+
+    /// The name of the workbook's main part, `xl/workbook.xml` as a rule.
+    pub fn workbook_part(&self) -> &str {
+        &self.workbook
+    }
+
+    /// The relationships of a part, in their order; none if it has none. The package's own go by "".
+    ///
+    /// **Errors**: those of reading XML.
+    pub fn relationships(&self, part: &str) -> Result<Vec<Relationship>> {
+        let name = relationships_part(part);
+        let Some(xml) = self.part(&name)? else { return Ok(Vec::new()) };
+        let mut found = read_relationships(&name, part, &xml)?;
+        for relationship in found.iter_mut().filter(|r| !r.external) {
+            if let Some(entry) = self.entry(&relationship.target) {
+                entry.part.clone_into(&mut relationship.target);
+            }
+        }
+        Ok(found)
+    }
+
+    /// Whether hence's sheets can be put into this package, and if not, why.
+    ///
+    /// **Errors**: `strict-format`, `signed`, `backslash-name`.
+    pub fn graftable(&self) -> std::result::Result<(), Box<Problem>> {
+        let refuse = |code, message: &str, hint: &str| {
+            Err(Box::new(Problem::error(code, Place::default(), message).hint(hint)))
+        };
+        if self.strict {
+            return refuse(
+                "strict-format",
+                "the workbook is saved in the strict variant of the format, into which no sheet is put",
+                "save it as an ordinary Excel workbook (.xlsx)",
+            );
+        }
+        let signed = |name: &str| {
+            key(name).starts_with("_xmlsignatures/")
+                || self.content_type(name).is_some_and(|kind| kind.contains("digital-signature"))
+        };
+        if self.parts().any(signed) {
+            return refuse(
+                "signed",
+                "the workbook is digitally signed, and any change would break the signature",
+                "fill an unsigned copy and sign the result",
+            );
+        }
+        if self.entries.iter().any(|entry| entry.name.contains('\\')) {
+            return refuse(
+                "backslash-name",
+                "the file's part names hold backslashes, which spreadsheet programs read in different ways",
+                "open the file in a spreadsheet program and save it again",
+            );
+        }
+        Ok(())
+    }
+
+    /// The package with changes made: the bytes of a new file.
+    ///
+    /// Entries that do not change are copied with their headers and packed bytes as they are and in their
+    /// order; replaced ones stay in their place; added ones come last. The same package and changes give the
+    /// same bytes: written entries bear the date 1980-01-01.
+    ///
+    /// **Errors**: `package-change` (a part to change that is not there, or to add that is),
+    /// `output-too-large`.
+    pub fn write(&self, changes: &Changes) -> Result<Vec<u8>> {
+        output::write(self, changes)
+    }
+}
+
+fn not_a_workbook(why: &str) -> WorkbookError {
+    Problem::error("not-a-workbook", Place::default(), format!("the file is no workbook: {why}"))
+        .hint("give a workbook saved as .xlsx or .xlsm")
+        .into()
+}

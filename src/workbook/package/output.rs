@@ -1,0 +1,232 @@
+//! Writing: the changed package as bytes, and bytes as a file that is there whole or not at all.
+
+use std::collections::{BTreeMap, BTreeSet};
+use std::io::Write;
+use std::path::{Path, PathBuf};
+
+use flate2::Compression;
+use flate2::write::DeflateEncoder;
+
+use super::container::moved_record;
+use super::{Package, key};
+use crate::problem::{Place, Problem, Result};
+
+/// What is to become of a package's parts. Names are matched without regard to case.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub struct Changes {
+    /// New bytes of parts that are there.
+    pub replace: BTreeMap<String, Vec<u8>>,
+    /// New parts, in their order.
+    pub add: Vec<(String, Vec<u8>)>,
+    /// Parts to leave out.
+    pub remove: BTreeSet<String>,
+}
+
+/// Day and time of entries that are written: the first that the format knows, so that the same input
+/// gives the same bytes.
+const DOS_DATE: u16 = 0x0021;
+
+pub(super) fn write(package: &Package, changes: &Changes) -> Result<Vec<u8>> {
+    let replace: BTreeMap<String, &Vec<u8>> =
+        changes.replace.iter().map(|(name, bytes)| (key(name), bytes)).collect();
+    let remove: BTreeSet<String> = changes.remove.iter().map(|name| key(name)).collect();
+    check(package, &replace, &remove, changes)?;
+
+    let mut zip = Zip::with_capacity(package.bytes.len() + package.bytes.len() / 4);
+    for entry in &package.entries {
+        let name = key(&entry.name);
+        if remove.contains(&name) {
+            continue;
+        }
+        match replace.get(&name) {
+            Some(bytes) => zip.add(&entry.name, bytes)?,
+            None => zip.copy(&package.bytes[entry.local.clone()], &package.bytes[entry.record.clone()])?,
+        }
+    }
+    for (name, bytes) in &changes.add {
+        zip.add(name.trim_start_matches('/'), bytes)?;
+    }
+    zip.finish()
+}
+
+fn check(
+    package: &Package,
+    replace: &BTreeMap<String, &Vec<u8>>,
+    remove: &BTreeSet<String>,
+    changes: &Changes,
+) -> Result<()> {
+    let fault = |message: String| Err(Problem::error("package-change", Place::default(), message).into());
+    for name in replace.keys().chain(remove) {
+        if !package.index.contains_key(name) {
+            return fault(format!("the package holds no part {name} that could be changed"));
+        }
+    }
+    if let Some(name) = replace.keys().find(|name| remove.contains(*name)) {
+        return fault(format!("{name} is to be both replaced and removed"));
+    }
+    let mut added = BTreeSet::new();
+    for (name, _) in &changes.add {
+        let name = key(name);
+        let there = package.index.contains_key(&name) && !remove.contains(&name);
+        if there || !added.insert(name.clone()) {
+            return fault(format!("the package holds a part {name} already"));
+        }
+    }
+    Ok(())
+}
+
+/// A zip archive under construction.
+struct Zip {
+    bytes: Vec<u8>,
+    directory: Vec<u8>,
+    count: usize,
+}
+
+impl Zip {
+    fn with_capacity(capacity: usize) -> Self {
+        Zip { bytes: Vec::with_capacity(capacity), directory: Vec::new(), count: 0 }
+    }
+
+    fn offset(&self) -> Result<u32> {
+        small(self.bytes.len())
+    }
+
+    /// An entry as it stood in the input: header, packed bytes and descriptor.
+    fn copy(&mut self, local: &[u8], record: &[u8]) -> Result<()> {
+        let offset = self.offset()?;
+        self.bytes.extend_from_slice(local);
+        self.directory.extend_from_slice(&moved_record(record, offset));
+        self.count += 1;
+        Ok(())
+    }
+
+    /// A new entry, deflated.
+    fn add(&mut self, name: &str, content: &[u8]) -> Result<()> {
+        let offset = self.offset()?;
+        let mut encoder = DeflateEncoder::new(Vec::new(), Compression::default());
+        let packed = encoder.write_all(content).and_then(|()| encoder.finish()).map_err(|e| too_large(&e))?;
+        let mut crc = flate2::Crc::new();
+        crc.update(content);
+        let utf8 = if name.is_ascii() { 0 } else { 0x0800_u16 };
+        let name_length = u16::try_from(name.len()).map_err(|e| too_large(&e))?;
+
+        // What both headers share: version needed, flags, method, time, date, checksum, sizes, name length.
+        let mut shared = Vec::with_capacity(26);
+        for field in [20, utf8, 8, 0, DOS_DATE] {
+            shared.extend_from_slice(&field.to_le_bytes());
+        }
+        for field in [crc.sum(), small(packed.len())?, small(content.len())?] {
+            shared.extend_from_slice(&field.to_le_bytes());
+        }
+        shared.extend_from_slice(&name_length.to_le_bytes());
+
+        self.bytes.extend_from_slice(b"PK\x03\x04");
+        self.bytes.extend_from_slice(&shared);
+        self.bytes.extend_from_slice(&[0; 2]);
+        self.bytes.extend_from_slice(name.as_bytes());
+        self.bytes.extend_from_slice(&packed);
+
+        self.directory.extend_from_slice(b"PK\x01\x02\x14\0");
+        self.directory.extend_from_slice(&shared);
+        // No extra field, no comment, first disk, no attributes.
+        self.directory.extend_from_slice(&[0; 12]);
+        self.directory.extend_from_slice(&offset.to_le_bytes());
+        self.directory.extend_from_slice(name.as_bytes());
+        self.count += 1;
+        Ok(())
+    }
+
+    fn finish(mut self) -> Result<Vec<u8>> {
+        let offset = self.offset()?;
+        let count = u16::try_from(self.count).map_err(|e| too_large(&e))?;
+        self.bytes.extend_from_slice(&self.directory);
+        self.bytes.extend_from_slice(b"PK\x05\x06\0\0\0\0");
+        self.bytes.extend_from_slice(&count.to_le_bytes());
+        self.bytes.extend_from_slice(&count.to_le_bytes());
+        self.bytes.extend_from_slice(&small(self.directory.len())?.to_le_bytes());
+        self.bytes.extend_from_slice(&offset.to_le_bytes());
+        self.bytes.extend_from_slice(&[0; 2]);
+        Ok(self.bytes)
+    }
+}
+
+fn small(length: usize) -> Result<u32> {
+    u32::try_from(length).map_err(|e| too_large(&e))
+}
+
+fn too_large(error: &dyn std::fmt::Display) -> crate::problem::WorkbookError {
+    Problem::error("output-too-large", Place::default(), format!("the output cannot be packed: {error}"))
+        .into()
+}
+
+/// Writes a file whole or not at all: a temporary file beside it, flushed to the disk, then renamed.
+///
+/// **Arguments**: `force` replaces a file that is there.
+/// **Errors**: `output-exists`, `cannot-write`; no temporary file is left behind.
+pub fn write_atomically(path: &Path, bytes: &[u8], force: bool) -> Result<()> {
+    let shown = path.display();
+    let failed = |e: std::io::Error| -> crate::problem::WorkbookError {
+        Problem::error("cannot-write", Place::default(), format!("{shown} cannot be written: {e}"))
+            .hint("choose another place with --out")
+            .into()
+    };
+    let exists = || -> crate::problem::WorkbookError {
+        Problem::error("output-exists", Place::default(), format!("{shown} exists already"))
+            .hint("--force replaces it, --out writes elsewhere")
+            .into()
+    };
+    if !force && path.symlink_metadata().is_ok() {
+        return Err(exists());
+    }
+    if path.is_dir() {
+        return Err(failed(std::io::Error::other("it is a folder")));
+    }
+    let folder = folder_of(path);
+    let mut builder = tempfile::Builder::new();
+    builder.prefix(".hence-").suffix(".tmp");
+    #[cfg(unix)]
+    {
+        use std::os::unix::fs::PermissionsExt;
+        // As for any new file, what others may do is left to the user's mask.
+        builder.permissions(std::fs::Permissions::from_mode(0o666));
+    }
+    let mut file = builder.tempfile_in(&folder).map_err(failed)?;
+    file.write_all(bytes).map_err(failed)?;
+    file.as_file().sync_all().map_err(failed)?;
+    let renamed = if force { file.persist(path) } else { file.persist_noclobber(path) };
+    match renamed {
+        Err(e) if e.error.kind() == std::io::ErrorKind::AlreadyExists => return Err(exists()),
+        Err(e) => return Err(failed(e.error)),
+        Ok(_) => {}
+    }
+    // The rename itself is made durable where the system lets a folder be flushed.
+    if let Ok(folder) = std::fs::File::open(&folder) {
+        let _ = folder.sync_all();
+    }
+    Ok(())
+}
+
+fn folder_of(path: &Path) -> PathBuf {
+    match path.parent() {
+        Some(folder) if !folder.as_os_str().is_empty() => folder.to_path_buf(),
+        _ => PathBuf::from("."),
+    }
+}
+
+/// Whether two paths name one file, by links, case or another way of writing it. A path that is not
+/// there yet is compared by its folder and name.
+pub fn same_file(a: &Path, b: &Path) -> bool {
+    #[cfg(unix)]
+    {
+        use std::os::unix::fs::MetadataExt;
+        if let (Ok(a), Ok(b)) = (a.metadata(), b.metadata()) {
+            return (a.dev(), a.ino()) == (b.dev(), b.ino());
+        }
+    }
+    let real = |path: &Path| {
+        path.canonicalize()
+            .ok()
+            .or_else(|| Some(folder_of(path).canonicalize().ok()?.join(path.file_name()?)))
+    };
+    matches!((real(a), real(b)), (Some(a), Some(b)) if a == b)
+}
