@@ -1,3 +1,4 @@
+//! Tests of the workbook crate.
 //! The workbook crate from outside: real, small and hostile workbooks.
 mod bare;
 mod formulas;

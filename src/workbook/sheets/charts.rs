@@ -6,39 +6,10 @@ use super::AuditInput;
 use super::rebuild::base_year;
 use crate::appraisal::Label;
 use crate::formulas::side;
+use crate::graft::{ChartFinish, Legend};
 use crate::layout::Layout;
 use crate::references::{Cell, Range, SheetRange};
 use crate::writer::{Chart, ChartKind, Series, Sheet, Style};
-
-/// Where a legend stands.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Legend {
-    /// Below the plot.
-    Bottom,
-}
-
-/// What a chart made by the spreadsheet writer still lacks. Charts and finishes go together by order.
-#[derive(Clone, Debug, Default, PartialEq)]
-pub struct ChartFinish {
-    /// Above the chart; also its alternative text.
-    pub title: Option<String>,
-    /// Along the first axis.
-    pub x_title: Option<String>,
-    /// Along the second axis.
-    pub y_title: Option<String>,
-    /// Number format of the first axis.
-    pub x_format: Option<String>,
-    /// Number format of the second axis.
-    pub y_format: Option<String>,
-    /// Ends of the first axis; the program's choice unless said.
-    pub x_range: Option<(f64, f64)>,
-    /// None: no legend.
-    pub legend: Option<Legend>,
-    /// A marker at every point of a line. Without it lines differ by their dashes.
-    pub markers: bool,
-    /// Width and height in columns and rows.
-    pub size: Option<(u32, u32)>,
-}
 
 /// Columns and rows of a chart.
 const SIZE: (u32, u32) = (7, 19);

@@ -15,14 +15,15 @@ mod summary;
 use hence_core::CAUTION;
 
 use crate::appraisal::Appraisal;
+use crate::graft::ChartFinish;
 use crate::layout::Layout;
+use crate::names_edit::NewName;
 use crate::outcome::ChoiceOutcome;
 use crate::problem::{Problem, Result};
 use crate::references::{Cell, SheetRange};
 use crate::writer::{self, Sheet, Style};
 
-pub use charts::{ChartFinish, Legend};
-pub use own::{OWN, OwnName, VERDICT, digest};
+pub use own::{OWN, VERDICT, digest};
 pub use summary::VERDICT_AGREES;
 
 /// The visible names of hence's sheets in this workbook, chosen so that they clash with nothing.
@@ -135,7 +136,7 @@ pub struct Built {
     /// How to finish its charts, in their order.
     pub charts: Vec<ChartFinish>,
     /// Names that go with the sheets: the verdict cell, and the mark of ownership of each sheet.
-    pub names: Vec<OwnName>,
+    pub names: Vec<NewName>,
     /// The verdict, evaluated here by the second route; the cell holds it live.
     pub verdict: String,
     /// Number of checks, valued totals included, and of those that differ.
@@ -157,9 +158,9 @@ pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
     let coverage = coverage::sheet(input);
     let summary = summary::sheet(input, layout, &checks, &coverage);
     let (charts, finishes) = charts::sheet(input, layout);
-    let mut names = vec![OwnName {
+    let mut names = vec![NewName {
         name: VERDICT.to_owned(),
-        scope_sheet: None,
+        scope: None,
         text: summary::verdict_text(&summary.sheet.name, summary.cell),
         hidden: false,
         comment: Some("The verdict of the audit: agrees, or begins with \"differs\".".to_owned()),

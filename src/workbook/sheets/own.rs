@@ -3,6 +3,7 @@
 use sha2::{Digest, Sha256};
 
 use super::SheetNames;
+use crate::names_edit::NewName;
 use crate::references::{Cell, quote_sheet};
 use crate::writer::{Content, Sheet};
 
@@ -10,21 +11,6 @@ use crate::writer::{Content, Sheet};
 pub const OWN: &str = "hence_own";
 /// The name of the verdict cell.
 pub const VERDICT: &str = "hence_verdict";
-
-/// A defined name that goes with hence's sheets.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct OwnName {
-    /// The name.
-    pub name: String,
-    /// The visible name of the sheet it is scoped to; none for the workbook.
-    pub scope_sheet: Option<String>,
-    /// What it refers to, without the equals sign.
-    pub text: String,
-    /// Whether spreadsheet programs list it.
-    pub hidden: bool,
-    /// Its comment; for [`OWN`] the [`digest`] of the sheet's texts.
-    pub comment: Option<String>,
-}
 
 impl SheetNames {
     /// Names that clash with no sheet of the workbook, whatever the case: `Discounting`, or
@@ -66,7 +52,7 @@ pub fn digest(cells: &[(Cell, String)]) -> String {
 
 /// The mark of ownership of one sheet. To be taken before notes of a person are put back, so that they
 /// stand outside of what hence calls its own. (Print titles come with the package.)
-pub(super) fn mark(sheet: &Sheet) -> OwnName {
+pub(super) fn mark(sheet: &Sheet) -> NewName {
     let texts: Vec<(Cell, String)> = sheet
         .cells()
         .filter_map(|(cell, content)| match content {
@@ -75,9 +61,9 @@ pub(super) fn mark(sheet: &Sheet) -> OwnName {
         })
         .collect();
     let range = crate::formulas::absolute(sheet.used());
-    OwnName {
+    NewName {
         name: OWN.to_owned(),
-        scope_sheet: Some(sheet.name.clone()),
+        scope: Some(sheet.name.clone()),
         text: format!("{}!{range}", quote_sheet(&sheet.name)),
         hidden: true,
         comment: Some(digest(&texts)),
