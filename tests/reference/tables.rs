@@ -23,7 +23,7 @@ impl Table {
         assert!(text.starts_with("# "), "{name} names its source first");
         let mut lines = text.lines().filter(|line| !line.starts_with('#'));
         let columns: Vec<&str> = lines.next().expect("a heading").split(',').collect();
-        let rows: Vec<Vec<&str>> = lines.map(|line| cells(line)).collect();
+        let rows: Vec<Vec<&str>> = lines.map(cells).collect();
         assert!(rows.iter().all(|row| row.len() == columns.len()), "{name} is not rectangular");
         Table { name, columns, rows }
     }
