@@ -22,7 +22,9 @@ use crate::report::{Companion, Report, option_reports};
 use crate::resolve::{Options, resolve};
 use crate::sheets::{AuditInput, Meta, SheetNames, build};
 use crate::valuation::{from_core, value};
-use crate::{graft, stale, verify};
+use crate::graft::{Graft, graft};
+use crate::stale;
+use crate::verify::{Expected, verify};
 
 /// What the run is told besides the workbook.
 #[derive(Clone, Debug)]
@@ -166,8 +168,22 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         let new = patch_sheet(&xml, writes).map_err(|error| in_sheet(error, name))?;
         patched.insert(part.clone(), new);
     }
-    let bytes = graft::graft(package, &book, &built, &previous, patched)?;
-    verify::verify(package, &bytes, &book, &plan.writes, &previous)?;
+    let ours = Package::from_bytes("audit.xlsx", built.bytes)?;
+    let leaving: Vec<String> = previous.iter().map(|sheet| sheet.name.clone()).collect();
+    let grafted = graft(
+        package,
+        &Graft {
+            ours: &ours,
+            previous: &leaving,
+            set_names: &built.names,
+            remove_names: &[],
+            charts: &built.charts,
+        },
+    )?;
+    let mut changes = grafted.changes;
+    changes.replace.extend(patched);
+    let bytes = package.write(&changes)?;
+    verify(package, &bytes, &Expected { changes: &changes, writes: &plan.writes, own_sheets: &grafted.sheets })?;
     let options = option_reports(&appraisal, &outcomes, &companions);
     let report =
         Report { options, problems, filled: plan.filled, ticked: plan.ticked, verdict: built.verdict.clone() };
