@@ -11,7 +11,6 @@ pub mod formulas;
 pub mod graft;
 pub mod layout;
 pub mod names_edit;
-pub mod naming;
 pub mod outcome;
 mod own;
 pub mod package;
