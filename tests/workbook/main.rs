@@ -3,3 +3,5 @@
 mod graft;
 mod package;
 mod patch;
+mod preserve;
+mod verify;
