@@ -1,7 +1,12 @@
 //! x
 
 mod graft;
+mod model;
+mod names_edit;
 mod package;
 mod patch;
 mod preserve;
+mod references;
+mod small;
+mod stale;
 mod verify;
