@@ -1,6 +1,7 @@
 //! x
 
 mod graft;
+mod hostile;
 mod model;
 mod names_edit;
 mod package;
