@@ -16,8 +16,7 @@ use crate::problem::{Place, Problem, Result, Severity};
 use crate::references::SheetRange;
 use crate::report::Status;
 use crate::resolve::{Options, resolve};
-use crate::roles::target_words;
-use crate::sheets::SheetNames;
+use crate::sheets::{SheetNames, role_words};
 use crate::tolerance;
 use crate::valuation::{cell_of, value};
 
@@ -132,7 +131,7 @@ impl CheckReport {
     ) {
         self.differences.push(Difference {
             place: Place::cells(&at.sheet, at.range).called(&target.from),
-            role: target_words(&target.role),
+            role: role_words(&target.role),
             found,
             expected,
             difference,

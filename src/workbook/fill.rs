@@ -158,6 +158,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         changes: &plan.changes,
         problems: &problems,
         carried: &carried,
+        differs: &differs(),
     };
     let built = build(&input, &layout)?;
     let mut patched: BTreeMap<String, Vec<u8>> = BTreeMap::new();
@@ -324,4 +325,17 @@ fn in_sheet(error: WorkbookError, sheet: &str) -> WorkbookError {
         }
     }
     problems.into()
+}
+
+/// What differs in the package by design, a sentence each, for the audit summary.
+fn differs() -> Vec<String> {
+    [
+        "Filled cells and hence's own sheets; every other cell is as it was.",
+        "The sheet list, the names hence_verdict, hence_own and hence_digest, and cell formats appended for the new sheets.",
+        "The list of content types and the workbook's relationships; the calculation chain is removed.",
+        "The workbook is marked to be calculated when it is opened.",
+        "Stored results of formulas that depend on filled cells are removed, so that nothing stale can be read.",
+    ]
+    .map(String::from)
+    .to_vec()
 }

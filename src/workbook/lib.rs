@@ -27,7 +27,7 @@ pub mod schedules;
 pub mod sheets;
 mod splice;
 pub mod stale;
-pub mod start;
+
 pub mod styles;
 pub mod tolerance;
 pub mod valuation;

@@ -10,8 +10,7 @@ use crate::own::OwnSheet;
 use crate::patch::{Cached, CellWrite};
 use crate::problem::{Place, Problem};
 use crate::references::{Cell, Range, SheetRange, quote_sheet};
-use crate::roles::target_words;
-use crate::sheets::{Change, TargetCell};
+use crate::sheets::{Change, TargetCell, role_words};
 use crate::tolerance;
 use crate::valuation::cell_of;
 
@@ -88,7 +87,7 @@ pub fn plan_targets(
                 };
                 if replaceable {
                     plan.filled += 1;
-                    plan.write(cell.at.clone(), target_words(&target.role), words(held), write);
+                    plan.write(cell.at.clone(), role_words(&target.role), words(held), write);
                     plan.cells.push(cell);
                 } else if kept.compare(held, result, &cell) {
                     plan.ticked += kept.take_tick();

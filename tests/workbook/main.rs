@@ -1,5 +1,5 @@
-//! Tests of the workbook crate.
 //! The workbook crate from outside: real, small and hostile workbooks.
+
 mod bare;
 mod formulas;
 mod graft;
@@ -8,9 +8,11 @@ mod model;
 mod names_edit;
 mod package;
 mod patch;
+mod preserve;
 mod references;
 mod resolve;
 mod roles;
 mod scenario;
 mod small;
 mod stale;
+mod verify;

@@ -499,7 +499,7 @@ pub(super) fn counts(results: Range, home: &str, sheet: &str) -> (String, String
 }
 
 /// A role in words.
-pub(super) fn role_words(role: &TargetRole) -> String {
+pub(crate) fn role_words(role: &TargetRole) -> String {
     match role {
         TargetRole::Factor => "factor".into(),
         TargetRole::PvByYear(None) => "PV by year: net".into(),

@@ -7,7 +7,7 @@ mod coverage;
 mod discounting;
 mod lines;
 mod offsets;
-mod own;
+pub(crate) mod own;
 mod rebuild;
 mod second_route;
 mod summary;
@@ -23,7 +23,8 @@ use crate::problem::{Problem, Result};
 use crate::references::{Cell, SheetRange};
 use crate::writer::{self, Sheet, Style};
 
-pub use own::{OWN, VERDICT, digest};
+pub use own::{DIGEST, OWN, VERDICT, digest};
+pub(crate) use checks::role_words;
 pub use summary::VERDICT_AGREES;
 
 /// The visible names of hence's sheets in this workbook, chosen so that they clash with nothing.
@@ -168,7 +169,7 @@ pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
     let discounting = discounting::sheet(input, layout);
     let mut sheets =
         vec![discounting, summary.sheet, coverage.sheet, checks.sheet, changes::sheet(input), charts];
-    names.extend(sheets.iter().map(own::mark));
+    names.extend(sheets.iter().flat_map(own::marks));
     for sheet in &mut sheets {
         put_back(sheet, input.carried);
     }
