@@ -31,8 +31,8 @@ pub struct IrrSearch {
 /// piece a bound on the sum shows that it has no root, or a bound on its slope that it has one at most.
 ///
 /// **Edge cases**: flows of one sign (or a single flow) have no rate. A root shared by an even number of rates, where
-/// the value touches zero without crossing it, is reported in `unresolved`, about 1e-7 wide; roots closer together than
-/// that likewise.
+/// the value touches zero without crossing it, is reported in `unresolved`, about 1e-13 wide; roots that rounding
+/// cannot tell apart likewise.
 ///
 /// **Accuracy**: the sum is formed in double-double arithmetic, exactly but for a relative 1e-25, and each rate is
 /// bisected to neighbouring numbers (beside 0 to 1e-25): within 2 units in the last place of the root of the flows as

@@ -198,7 +198,7 @@ fn what_cannot_be_searched_is_refused() {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig::with_cases(200))]
+    #![proptest_config(ProptestConfig { cases: 64, ..crate::repeatable() })]
 
     #[test]
     fn chosen_rates_are_found(places in prop::collection::btree_set(0u32..28, 1..5)) {
