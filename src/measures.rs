@@ -35,6 +35,17 @@ pub fn undiscounted_total(flows: &[f64]) -> Result<f64> {
 /// order of the flows does not matter.
 ///
 /// **Errors**: `Shape` where lengths differ; `NotFinite`, with the index; `OutsideDomain` from the curve.
+///
+/// ```
+/// use hence_core::{Compounding, Spec, Where, present_value};
+/// let curve = Spec::Flat { rate: 1.0, compounding: Compounding::Yearly }.curve(&Where::default()).unwrap();
+/// assert_eq!(present_value(&curve, &[1.0, 2.0, 3.0], &[8.0, 8.0, 8.0]).unwrap(), 7.0);
+/// // 1,000,000 due in 140 years at 10%: 1.603 with yearly compounding.
+/// let curve = Spec::Flat { rate: 0.1, compounding: Compounding::Yearly }.curve(&Where::default()).unwrap();
+/// assert!((present_value(&curve, &[140.0], &[1e6]).unwrap() - 1.603).abs() < 5e-4);
+/// let error = present_value(&curve, &[1.0, 2.0], &[8.0, f64::NAN]).unwrap_err();
+/// assert_eq!(error.to_string(), "flows[1]: found NaN, allowed: finite numbers (not-finite)");
+/// ```
 pub fn present_value(curve: &Curve, offsets: &[f64], flows: &[f64]) -> Result<f64> {
     check::same_length(("offsets", offsets), ("flows", flows))?;
     check::finite_all("offsets", offsets)?;
@@ -177,6 +188,13 @@ fn ratio(above: (&'static str, f64), below: (&'static str, f64)) -> Result<f64> 
 ///
 /// **Source**: for one rate, the capital recovery factor r/(1 - (1+r)^-N); E. L. Grant, Principles of Engineering
 /// Economy, 1930.
+///
+/// ```
+/// use hence_core::{Compounding, Spec, Where, annual_equivalent};
+/// let curve = Spec::Flat { rate: 1.0, compounding: Compounding::Yearly }.curve(&Where::default()).unwrap();
+/// assert_eq!(annual_equivalent(&curve, 7.0, 3).unwrap(), (8.0, 0.875));
+/// assert_eq!(annual_equivalent(&curve, 7.0, 0).unwrap_err().code(), "no-meaning");
+/// ```
 pub fn annual_equivalent(curve: &Curve, npv: f64, service_years: u32) -> Result<(f64, f64)> {
     check::finite("npv", npv)?;
     if !(1..=100_000).contains(&service_years) {
