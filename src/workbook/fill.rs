@@ -7,6 +7,7 @@ use hence_core::{Basis, Catalogue};
 use sha2::{Digest, Sha256};
 
 use crate::appraisal::{Appraisal, Given};
+use crate::graft::{Graft, graft};
 use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::outcome::ChoiceOutcome;
@@ -21,9 +22,8 @@ use crate::references::SheetRange;
 use crate::report::{Companion, Report, option_reports};
 use crate::resolve::{Options, resolve};
 use crate::sheets::{AuditInput, Meta, SheetNames, build};
-use crate::valuation::{from_core, value};
-use crate::graft::{Graft, graft};
 use crate::stale;
+use crate::valuation::{from_core, value};
 use crate::verify::{Expected, verify};
 
 /// What the run is told besides the workbook.
@@ -184,10 +184,19 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     let mut changes = grafted.changes;
     changes.replace.extend(patched);
     let bytes = package.write(&changes)?;
-    verify(package, &bytes, &Expected { changes: &changes, writes: &plan.writes, own_sheets: &grafted.sheets })?;
+    verify(
+        package,
+        &bytes,
+        &Expected { changes: &changes, writes: &plan.writes, own_sheets: &grafted.sheets },
+    )?;
     let options = option_reports(&appraisal, &outcomes, &companions);
-    let report =
-        Report { options, problems, filled: plan.filled, ticked: plan.ticked, verdict: built.verdict.clone() };
+    let report = Report {
+        options,
+        problems,
+        filled: plan.filled,
+        ticked: plan.ticked,
+        verdict: built.verdict.clone(),
+    };
     Ok(Filled { bytes, report })
 }
 
@@ -198,12 +207,15 @@ fn require_basis(
     old: &str,
     catalogue: &Catalogue,
 ) -> Result<()> {
-    let parse = |text: &str, place: Place| Basis::parse(text, catalogue).map_err(|error| from_core(&error, place));
+    let parse =
+        |text: &str, place: Place| Basis::parse(text, catalogue).map_err(|error| from_core(&error, place));
     let wanted = parse(old, Place::name("--replace"))?.canonical();
     let Some(declared) = declared else {
         let place = Place::name(&appraisal.choices[0].name);
         let message = format!("the workbook declares no basis, so it is not {wanted}");
-        return Err(Problem::error("basis-differs", place, message).hint("--basis instead of --replace").into());
+        return Err(Problem::error("basis-differs", place, message)
+            .hint("--basis instead of --replace")
+            .into());
     };
     let mut problems = Vec::new();
     for choice in &declared.choices {

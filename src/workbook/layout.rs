@@ -122,10 +122,11 @@ impl Layout {
             rows.push(ChoiceRows {
                 streams: choice.streams.iter().map(|_| next()).collect(),
                 absolute: Sums { costs: next(), benefits: next(), net: next() },
-                increment: outcome
-                    .increment
-                    .as_ref()
-                    .map(|_| Sums { costs: next(), benefits: next(), net: next() }),
+                increment: outcome.increment.as_ref().map(|_| Sums {
+                    costs: next(),
+                    benefits: next(),
+                    net: next(),
+                }),
                 annuity: next(),
                 annual: next(),
                 ratio: next(),

@@ -29,7 +29,8 @@ pub fn own_sheets(book: &Workbook) -> Vec<OwnSheet> {
             let index = mark.scope?;
             let sheet = book.sheets.get(index)?;
             let NameTarget::Cells(at) = book.resolve(mark) else { return None };
-            let kept = book.names.iter().find(|n| n.scope == Some(index) && n.name.eq_ignore_ascii_case(DIGEST));
+            let kept =
+                book.names.iter().find(|n| n.scope == Some(index) && n.name.eq_ignore_ascii_case(DIGEST));
             let digest = kept.map(|name| name.text.trim_matches('"').to_owned());
             Some(OwnSheet { index, name: sheet.name.clone(), used: at.range, digest })
         })
@@ -65,8 +66,12 @@ pub fn carried(
         if own.digest.as_ref() != Some(&digest(&texts)) {
             let place = Place { sheet: Some(own.name.clone()), ..Place::default() };
             problems.push(
-                Problem::error("own-sheet-edited", place, "a text that hence wrote on this sheet was changed")
-                    .hint("move notes outside of hence's own cells, or delete the sheet, and fill again"),
+                Problem::error(
+                    "own-sheet-edited",
+                    place,
+                    "a text that hence wrote on this sheet was changed",
+                )
+                .hint("move notes outside of hence's own cells, or delete the sheet, and fill again"),
             );
             continue;
         }

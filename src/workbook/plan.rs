@@ -159,15 +159,18 @@ impl Kept {
         let mut problems = Vec::new();
         let total = target.held.len();
         if let Some(place) = span(&self.texts) {
-            let message = format!("{} of {total} cells hold text, which is never overwritten", self.texts.len());
+            let message =
+                format!("{} of {total} cells hold text, which is never overwritten", self.texts.len());
             problems.push(
                 Problem::error("target-text", place.called(&target.from), message)
                     .hint("clear the cells, or point the name at others"),
             );
         }
         if let Some(place) = span(&self.waiting) {
-            let message =
-                format!("{} of {total} formulas have no result in the file, so nothing was compared", self.waiting.len());
+            let message = format!(
+                "{} of {total} formulas have no result in the file, so nothing was compared",
+                self.waiting.len()
+            );
             problems.push(
                 Problem::warning("awaits-recalculation", place.called(&target.from), message)
                     .hint("open and save the workbook in a spreadsheet program first"),
@@ -204,7 +207,10 @@ pub fn span(cells: &[SheetRange]) -> Option<Place> {
                 row: range.first.row.min(cell.range.first.row),
                 col: range.first.col.min(cell.range.first.col),
             },
-            last: Cell { row: range.last.row.max(cell.range.last.row), col: range.last.col.max(cell.range.last.col) },
+            last: Cell {
+                row: range.last.row.max(cell.range.last.row),
+                col: range.last.col.max(cell.range.last.col),
+            },
         };
     }
     Some(Place::cells(&first.sheet, range))

@@ -2,8 +2,9 @@
 
 use chrono::{Datelike, NaiveDate};
 use hence_core::{
-    Basis, Catalogue, Curve, DayCount, Eras, Payback, Position, Timing, Where, annual_equivalent,
-    benefit_cost_ratio, discounted_payback, dot, era_shares, internal_rates, mean_time, offset_of_dates, sum,
+    Basis, Catalogue, Curve, DayCount, Eras, IRR_INTERVAL, Payback, Position, Timing, Where,
+    annual_equivalent, benefit_cost_ratio, discounted_payback, dot, era_shares, internal_rates, mean_time,
+    offset_of_dates, sum,
 };
 
 use crate::appraisal::{Appraisal, Axis, Base, Choice, Label, Stream, StreamKind};
@@ -11,14 +12,8 @@ use crate::outcome::{ChoiceOutcome, StreamOutcome, Totals};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::references::{Cell, Range, SheetRange};
 
-/// The interval in which internal rates of return are searched.
-pub const IRR_INTERVAL: (f64, f64) = (-0.5, 1.0);
-
 /// Values every option; all problems are reported together.
-pub fn value(
-    appraisal: &Appraisal,
-    catalogue: &Catalogue,
-) -> Result<(Vec<ChoiceOutcome>, Vec<Problem>)> {
+pub fn value(appraisal: &Appraisal, catalogue: &Catalogue) -> Result<(Vec<ChoiceOutcome>, Vec<Problem>)> {
     let mut problems = Vec::new();
     let mut outcomes = Vec::new();
     for choice in &appraisal.choices {
@@ -166,8 +161,18 @@ pub fn base_words(base: &Base) -> String {
 
 fn date_words(date: NaiveDate) -> String {
     const MONTHS: [&str; 12] = [
-        "January", "February", "March", "April", "May", "June", "July", "August", "September", "October",
-        "November", "December",
+        "January",
+        "February",
+        "March",
+        "April",
+        "May",
+        "June",
+        "July",
+        "August",
+        "September",
+        "October",
+        "November",
+        "December",
     ];
     format!("{} {} {}", date.day(), MONTHS[date.month0() as usize], date.year())
 }
@@ -338,7 +343,7 @@ fn value_stream(
         None => 0.0,
         Some(tail) => tail
             .value
-            .present_value(curve, clock.offsets[last], last_flow, base_year)
+            .timed_present_value(curve, clock.years[last], clock.timing, last_flow, base_year)
             .map_err(|error| from_core(&error, place_of(&tail.at, &tail.from)))?,
     };
     let pv_by_year: Vec<f64> = flows.iter().zip(factors).map(|(x, d)| x * d).collect();
@@ -431,11 +436,7 @@ fn measure_gross(outcome: &mut ChoiceOutcome) {
 }
 
 /// NPV per unit of the constrained cost, cost per unit of each effect; over the baseline where given.
-fn measure_units(
-    outcome: &mut ChoiceOutcome,
-    choice: &Choice,
-    baseline: Option<(&ChoiceOutcome, &Choice)>,
-) {
+fn measure_units(outcome: &mut ChoiceOutcome, choice: &Choice, baseline: Option<(&ChoiceOutcome, &Choice)>) {
     let budget = |outcome: &ChoiceOutcome, choice: &Choice, names: &[String]| {
         let streams = choice.streams.iter().zip(&outcome.streams);
         sum(&streams.filter(|(s, _)| names.contains(&s.name)).map(|(_, o)| o.pv).collect::<Vec<_>>())
@@ -444,8 +445,7 @@ fn measure_units(
     if let Some((base, base_choice)) = baseline {
         spent -= budget(base, base_choice, &choice.budget);
     }
-    outcome.npv_per_budget =
-        (!choice.budget.is_empty() && spent > 0.0).then(|| outcome.totals().npv / spent);
+    outcome.npv_per_budget = (!choice.budget.is_empty() && spent > 0.0).then(|| outcome.totals().npv / spent);
     let cost = outcome.totals().pv_costs;
     let per_unit = |quantity: f64| (quantity != 0.0).then(|| cost / quantity);
     outcome.effects = choice

@@ -5,7 +5,9 @@
 
 use std::collections::BTreeMap;
 
-use xlsxwriter::format::{FormatAlignment, FormatBorder, FormatColor, FormatPatterns, FormatVerticalAlignment};
+use xlsxwriter::format::{
+    FormatAlignment, FormatBorder, FormatColor, FormatPatterns, FormatVerticalAlignment,
+};
 use xlsxwriter::prelude::{Format, Workbook, Worksheet};
 use xlsxwriter::worksheet::PaperType;
 
@@ -222,10 +224,8 @@ impl Sheet {
     /// The rectangle from A1 that holds everything on the sheet.
     pub fn used(&self) -> Range {
         let cells = self.cells.keys().copied().chain(self.merges.iter().map(|(range, ..)| range.last));
-        let last = cells.fold(Cell { row: 0, col: 0 }, |a, b| Cell {
-            row: a.row.max(b.row),
-            col: a.col.max(b.col),
-        });
+        let last =
+            cells.fold(Cell { row: 0, col: 0 }, |a, b| Cell { row: a.row.max(b.row), col: a.col.max(b.col) });
         Range { first: Cell { row: 0, col: 0 }, last }
     }
 

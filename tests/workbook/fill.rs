@@ -19,7 +19,11 @@ fn the_sample_is_filled() {
     let package = Package::open(&sample("mine-drainage.xlsx")).expect("the sample opens");
     let result = filled(&package, &FillRequest::default());
     std::fs::write("/tmp/out/mine.audited.xlsx", &result.bytes).unwrap();
-    for o in &result.report.options { println!("{:?} {:?}", o.name, o.totals()); }
-    for p in &result.report.problems { println!("{p}"); }
+    for o in &result.report.options {
+        println!("{:?} {:?}", o.name, o.totals());
+    }
+    for p in &result.report.problems {
+        println!("{p}");
+    }
     println!("{} {} {}", result.report.verdict, result.report.filled, result.report.ticked);
 }

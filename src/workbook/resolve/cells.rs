@@ -84,8 +84,12 @@ pub(super) fn numbers(context: &mut Context, grid: &Grid, called: &str) -> Numbe
 pub(super) fn single(context: &mut Context, named: &Named) -> Option<ReadCell> {
     if named.at.range.first != named.at.range.last {
         context.report(
-            Problem::error("one-cell", named.place(), format!("covers {} cells, allowed is one", size(&named.at)))
-                .hint(format!("let {} refer to {}", named.from, first_cell(&named.at))),
+            Problem::error(
+                "one-cell",
+                named.place(),
+                format!("covers {} cells, allowed is one", size(&named.at)),
+            )
+            .hint(format!("let {} refer to {}", named.from, first_cell(&named.at))),
         );
         return None;
     }
@@ -146,9 +150,14 @@ mod tests {
 
     #[test]
     fn texts_that_look_like_numbers() {
-        for (text, number) in
-            [("1,200", 1200.0), ("£3.5", 3.5), ("(4)", -4.0), (" 7 ", 7.0), ("'2026", 2026.0), ("1e3", 1000.0)]
-        {
+        for (text, number) in [
+            ("1,200", 1200.0),
+            ("£3.5", 3.5),
+            ("(4)", -4.0),
+            (" 7 ", 7.0),
+            ("'2026", 2026.0),
+            ("1e3", 1000.0),
+        ] {
             assert_eq!(text_as_number(text), Some(number), "{text}");
         }
         assert!((text_as_number("20%").unwrap() - 0.2).abs() < 1e-15);

@@ -48,7 +48,10 @@ pub(super) fn check(context: &mut Context, choice: &Choice) {
                     Problem::error(
                         "overlap",
                         Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
-                        format!("shares cells with {} [{}], whose flows would count twice", other.at, other.from),
+                        format!(
+                            "shares cells with {} [{}], whose flows would count twice",
+                            other.at, other.from
+                        ),
                     )
                     .hint("give each stream its own cells"),
                 );
@@ -65,7 +68,10 @@ pub(super) fn check(context: &mut Context, choice: &Choice) {
                     Problem::error(
                         "double-count",
                         Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
-                        format!("is a total that holds {} [{}], whose flows would count twice", other.at, other.from),
+                        format!(
+                            "is a total that holds {} [{}], whose flows would count twice",
+                            other.at, other.from
+                        ),
                     )
                     .hint("name the total or its parts, not both"),
                 ),
@@ -155,7 +161,10 @@ pub(super) fn check_aligned(context: &mut Context, at: &SheetRange, from: &str, 
             Problem::warning(
                 "misaligned",
                 Place::cells(&at.sheet, at.range).called(from),
-                format!("stands beside other cells than the years {}: its first cell is taken for the first year", years.range),
+                format!(
+                    "stands beside other cells than the years {}: its first cell is taken for the first year",
+                    years.range
+                ),
             )
             .hint("check that the name begins at the first year"),
         );

@@ -9,9 +9,9 @@ use crate::problem::Place;
 use crate::reading::Value;
 use crate::references::{Cell, Range, SheetRange};
 
-use super::{Context, note};
 use super::choices::Built;
 use super::counted::aligned;
+use super::{Context, note};
 
 /// Rows that are listed, at most; a sheet of data can hold a million.
 const MAX_ROWS_LISTED: usize = 5_000;
@@ -58,8 +58,12 @@ pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
                 let roles = roles.get(&at).cloned().unwrap_or_default();
                 let after_years = band.years.is_none_or(|years| index > years);
                 let wanted = !roles.is_empty() || line.numbers.len() > usize::from(!after_years);
-                (wanted && Some(index) != band.years)
-                    .then(|| Covered { at, heading: line.heading, roles, total: sum(&line.numbers) })
+                (wanted && Some(index) != band.years).then(|| Covered {
+                    at,
+                    heading: line.heading,
+                    roles,
+                    total: sum(&line.numbers),
+                })
             }));
         }
     }
@@ -67,7 +71,10 @@ pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
         context.report(note(
             "coverage-cut",
             Place::default(),
-            format!("{} numeric rows run along the years; the first {MAX_ROWS_LISTED} are listed", covered.len()),
+            format!(
+                "{} numeric rows run along the years; the first {MAX_ROWS_LISTED} are listed",
+                covered.len()
+            ),
         ));
         covered.truncate(MAX_ROWS_LISTED);
     }
@@ -100,7 +107,9 @@ fn bands(built: &Built) -> BTreeMap<String, Vec<Band>> {
             Direction::Across => {
                 Band { first: first.col, last: last.col, down: false, years: years.then_some(first.row) }
             }
-            Direction::Down => Band { first: first.row, last: last.row, down: true, years: years.then_some(first.col) },
+            Direction::Down => {
+                Band { first: first.row, last: last.row, down: true, years: years.then_some(first.col) }
+            }
         }
     };
     for axis in &built.axes {

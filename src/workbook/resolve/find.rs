@@ -61,7 +61,9 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
             continue;
         }
         match cells(context, defined) {
-            Ok(at) => found.push(Named { name, from: defined.name.clone(), at, scope: scope(context, defined) }),
+            Ok(at) => {
+                found.push(Named { name, from: defined.name.clone(), at, scope: scope(context, defined) })
+            }
             Err(problem) => context.report(problem),
         }
     }
@@ -89,7 +91,10 @@ pub(super) fn later(name: &RoleName, place: Place) -> Option<Problem> {
         Status::SupportedAlone(reason) | Status::Later(reason) => reason,
     };
     let (why, what) = reason.split_once(": ").unwrap_or((reason, "leave this name out"));
-    Some(Problem::error("unsupported-role", place, format!("`{}` is not supported: {why}", name.words())).hint(what))
+    Some(
+        Problem::error("unsupported-role", place, format!("`{}` is not supported: {why}", name.words()))
+            .hint(what),
+    )
 }
 
 /// The sheet a name is scoped to.
@@ -99,7 +104,8 @@ pub(super) fn scope(context: &Context, defined: &DefinedName) -> Option<String> 
 
 /// Whether one of the first `count` (from the command line) has the same role, stream and option.
 fn beaten(found: &[Named], name: &RoleName, count: usize) -> bool {
-    let same = |a: &Option<String>, b: &Option<String>| a.as_deref().map(roles::key) == b.as_deref().map(roles::key);
+    let same =
+        |a: &Option<String>, b: &Option<String>| a.as_deref().map(roles::key) == b.as_deref().map(roles::key);
     found.iter().take(count).filter(|named| named.from.starts_with("--role")).any(|named| {
         named.name.role == name.role
             && same(&named.name.stream, &name.stream)
@@ -185,15 +191,17 @@ pub(super) fn cells(context: &Context, defined: &DefinedName) -> Result<SheetRan
             format!("refers to another workbook, `{}`", super::cells::shown(&text)),
             "bring the cells into this workbook and name them here",
         ),
-        NameTarget::MissingSheet(sheet) => {
-            refuse("name-missing-sheet", format!("refers to the sheet `{sheet}`, which does not exist"), again)
-        }
-        NameTarget::Table { table, .. } => {
-            refuse("name-table", format!("refers to part of the table `{table}`, which is not read yet"), again)
-        }
-        NameTarget::ThreeD => {
-            refuse("name-sheets", "refers to several sheets at once".to_owned(), again)
-        }
+        NameTarget::MissingSheet(sheet) => refuse(
+            "name-missing-sheet",
+            format!("refers to the sheet `{sheet}`, which does not exist"),
+            again,
+        ),
+        NameTarget::Table { table, .. } => refuse(
+            "name-table",
+            format!("refers to part of the table `{table}`, which is not read yet"),
+            again,
+        ),
+        NameTarget::ThreeD => refuse("name-sheets", "refers to several sheets at once".to_owned(), again),
     }
 }
 

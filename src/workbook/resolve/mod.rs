@@ -138,9 +138,8 @@ impl<'a> Context<'a> {
         let mut problems = std::mem::take(&mut self.problems);
         problems.sort_by_cached_key(|problem| {
             let sheet = problem.place.sheet.as_deref();
-            let index = sheet.map_or(0, |name| {
-                1 + order.iter().position(|known| *known == name).unwrap_or(order.len())
-            });
+            let index = sheet
+                .map_or(0, |name| 1 + order.iter().position(|known| *known == name).unwrap_or(order.len()));
             (index, problem.place.range.map(|range| range.first), problem.code, problem.message.clone())
         });
         problems.retain(|problem| seen.insert(format!("{problem} {:?}", problem.hint)));

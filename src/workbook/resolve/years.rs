@@ -67,7 +67,8 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
 
 /// One cell of the years.
 fn label(content: &ReadCell, date1904: bool, place: Place) -> Result<Label, Problem> {
-    let wrong = |message: String, hint: &str| Err(Problem::error("years-value", place.clone(), message).hint(hint));
+    let wrong =
+        |message: String, hint: &str| Err(Problem::error("years-value", place.clone(), message).hint(hint));
     match &content.value {
         Value::Blank if content.lacks_result() => number(content, place).map(|_| Label::Number(0)),
         Value::Blank => Err(Problem::error("years-blank", place, "is blank among the years")
@@ -127,12 +128,8 @@ fn step(last: &Label, next: &Label, place: Place) -> Option<Problem> {
         (Label::Offset(a), Label::Offset(b)) => (b > a, a == b),
         _ => {
             return Some(
-                Problem::error(
-                    "years-mixed",
-                    place,
-                    format!("is {} after {}", kind(next), kind(last)),
-                )
-                .hint("enter all years in one way"),
+                Problem::error("years-mixed", place, format!("is {} after {}", kind(next), kind(last)))
+                    .hint("enter all years in one way"),
             );
         }
     };
@@ -156,8 +153,12 @@ fn step(last: &Label, next: &Label, place: Place) -> Option<Problem> {
     };
     (skipped > 0).then(|| {
         let years = if skipped == 1 { "1 year is".to_owned() } else { format!("{skipped} years are") };
-        Problem::warning("years-gap", place, format!("{} follows {}: {years} left out", words(next), words(last)))
-            .hint("nothing flows in a year left out; check that this is meant")
+        Problem::warning(
+            "years-gap",
+            place,
+            format!("{} follows {}: {years} left out", words(next), words(last)),
+        )
+        .hint("nothing flows in a year left out; check that this is meant")
     })
 }
 
@@ -211,7 +212,10 @@ pub(super) fn base(context: &mut Context, named: Option<&Named>, axis: &Axis) ->
             return None;
         }
         Err(problem) => {
-            context.report(Problem { code: if problem.code == "years-value" { "base-value" } else { problem.code }, ..problem });
+            context.report(Problem {
+                code: if problem.code == "years-value" { "base-value" } else { problem.code },
+                ..problem
+            });
             return None;
         }
     };

@@ -46,7 +46,8 @@ fn block(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, k: usize) {
     let block = &layout.blocks[k];
     let choice = &input.appraisal.choices[block.choice];
     let outcome = &input.outcomes[block.choice];
-    let options: Vec<&str> = block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
+    let options: Vec<&str> =
+        block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
     let (first, last) = (block.column, block.column + 3);
     let canonical = format!("Basis: {} ({})", outcome.basis.canonical(), options.join(", "));
     sheet.paragraph(BASIS_ROW, first, last, Style::Strong, canonical);
@@ -118,13 +119,7 @@ fn streams(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, c: usize)
         sheet.text(row, at(Column::Stream), Style::Text, &stream.name);
         sheet.text(row, at(Column::Side), Style::Text, side_words(stream.kind));
         let sum = sum_expression(stream, &home);
-        sheet.formula(
-            row,
-            at(Column::Undiscounted),
-            Style::Money,
-            sum,
-            Cached::Number(result.undiscounted),
-        );
+        sheet.formula(row, at(Column::Undiscounted), Style::Money, sum, Cached::Number(result.undiscounted));
         if stream.tail.is_some() {
             sheet.number(row, at(Column::Tail), Style::Money, result.pv_tail);
         }
@@ -171,7 +166,14 @@ fn sums(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, c: usize) {
     {
         let base = &layout.rows[baseline].absolute;
         for (row, from, less, name, plain, discounted) in [
-            (over.costs, sums.costs, base.costs, "Costs over the baseline", increment.costs, increment.pv_costs),
+            (
+                over.costs,
+                sums.costs,
+                base.costs,
+                "Costs over the baseline",
+                increment.costs,
+                increment.pv_costs,
+            ),
             (
                 over.benefits,
                 sums.benefits,

@@ -98,7 +98,13 @@ impl Line {
     }
 
     /// A line about a cell.
-    pub fn cell(place: String, what: impl Into<String>, recorded: Live, now: Option<Live>, allowed: f64) -> Self {
+    pub fn cell(
+        place: String,
+        what: impl Into<String>,
+        recorded: Live,
+        now: Option<Live>,
+        allowed: f64,
+    ) -> Self {
         let what = Live { formula: String::new(), value: Cached::Text(what.into()) };
         Line {
             recorded,
@@ -166,7 +172,9 @@ impl Line {
         }
         let terms: Vec<String> = terms
             .iter()
-            .map(|x| if self.relative { format!("ABS({x}/{recorded}-1)") } else { format!("ABS({x}-{recorded})") })
+            .map(|x| {
+                if self.relative { format!("ABS({x}/{recorded}-1)") } else { format!("ABS({x}-{recorded})") }
+            })
             .collect();
         let text = match terms.as_slice() {
             [] => "0".to_owned(),

@@ -23,8 +23,8 @@ use crate::problem::{Problem, Result};
 use crate::references::{Cell, SheetRange};
 use crate::writer::{self, Sheet, Style};
 
-pub use own::{DIGEST, OWN, VERDICT, digest};
 pub(crate) use checks::role_words;
+pub use own::{DIGEST, OWN, VERDICT, digest};
 pub use summary::VERDICT_AGREES;
 
 /// The visible names of hence's sheets in this workbook, chosen so that they clash with nothing.

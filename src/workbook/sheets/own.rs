@@ -71,7 +71,10 @@ pub(super) fn marks(sheet: &Sheet) -> [NewName; 2] {
         hidden: true,
         comment: None,
     };
-    [mark(OWN, format!("{}!{range}", quote_sheet(&sheet.name))), mark(DIGEST, format!("\"{}\"", digest(&texts)))]
+    [
+        mark(OWN, format!("{}!{range}", quote_sheet(&sheet.name))),
+        mark(DIGEST, format!("\"{}\"", digest(&texts))),
+    ]
 }
 
 #[cfg(test)]

@@ -274,7 +274,8 @@ impl Rebuilt {
                 }
                 let top = self.row(k) + 4;
                 let end = top + bands.len() as u32 - 1;
-                let text = format!("LOOKUP({}-1,{},{})", at(row, 0), span(top, 0, end, 0), span(top, 2, end, 2));
+                let text =
+                    format!("LOOKUP({}-1,{},{})", at(row, 0), span(top, 0, end, 0), span(top, 2, end, 2));
                 sheet.formula(row, rate, Style::Rate, text, Cached::Number(form.yearly(n as usize)));
                 let text = format!("{}/(1+{})", at(row - 1, factor), at(row, rate));
                 sheet.formula(row, factor, Style::Factor, text, Cached::Number(route.chain(k)[n as usize]));
