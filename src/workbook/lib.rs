@@ -15,4 +15,5 @@ pub mod references;
 pub mod resolve;
 pub mod roles;
 pub mod sheets;
+pub mod suggest;
 pub mod xml;

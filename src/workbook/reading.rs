@@ -121,10 +121,13 @@ impl<'a> Sheets<'a> {
                 wanted.entry(&range.sheet).or_default().push(range.range);
             }
         }
+        let mut problems = Vec::new();
         for (sheet, ranges) in wanted {
-            self.load_sheet(sheet, ranges)?;
+            if let Err(error) = self.load_sheet(sheet, ranges) {
+                problems.extend(error.problems().iter().cloned());
+            }
         }
-        Ok(())
+        if problems.is_empty() { Ok(()) } else { Err(problems.into()) }
     }
 
     /// The cells of a range.
@@ -133,11 +136,7 @@ impl<'a> Sheets<'a> {
     pub fn range(&mut self, at: &SheetRange) -> Result<Grid> {
         self.load(std::slice::from_ref(at))?;
         let read = self.read.entry(at.sheet.clone()).or_default();
-        let cells = at
-            .range
-            .cells()
-            .map(|cell| read.cells.get(&cell).cloned().unwrap_or_default())
-            .collect();
+        let cells = at.range.cells().map(|cell| read.cells.get(&cell).cloned().unwrap_or_default()).collect();
         Ok(Grid { at: at.clone(), cells })
     }
 
@@ -146,7 +145,8 @@ impl<'a> Sheets<'a> {
     /// **Errors**: `missing-sheet`, `unreadable`.
     pub fn visit(&mut self, sheet: &str, mut see: impl FnMut(Cell, Value)) -> Result<()> {
         let place = Place { sheet: Some(sheet.to_owned()), ..Place::default() };
-        let mut reader = self.values.worksheet_cells_reader(sheet).map_err(|e| unreadable(place.clone(), &e))?;
+        let mut reader =
+            self.values.worksheet_cells_reader(sheet).map_err(|e| unreadable(place.clone(), &e))?;
         while let Some(cell) = reader.next_cell().map_err(|e| unreadable(place.clone(), &e))? {
             let (row, col) = cell.get_position();
             let value = value_of(cell.get_value());
@@ -160,13 +160,16 @@ impl<'a> Sheets<'a> {
     fn load_sheet(&mut self, sheet: &str, ranges: Vec<Range>) -> Result<()> {
         let place = Place { sheet: Some(sheet.to_owned()), ..Place::default() };
         let Some(part) = self.parts.get(sheet) else {
-            return Err(Problem::error("missing-sheet", place, "the workbook has no sheet of this name").into());
+            return Err(
+                Problem::error("missing-sheet", place, "the workbook has no sheet of this name").into()
+            );
         };
         let wanted = |cell: Cell| ranges.iter().any(|range| range.contains(cell));
         let xml = self.package.part(part)?.unwrap_or_default();
         let found = scan::scan(part, &xml, wanted)?;
         drop(xml);
-        let mut reader = self.values.worksheet_cells_reader(sheet).map_err(|e| unreadable(place.clone(), &e))?;
+        let mut reader =
+            self.values.worksheet_cells_reader(sheet).map_err(|e| unreadable(place.clone(), &e))?;
         let formats: Vec<Option<String>> = reader
             .styles()
             .iter()

@@ -169,12 +169,24 @@ pub const ROLES: &[RoleInfo] = &[
         Takes::NoStream,
         "a row or column of calendar years, financial years, year numbers or dates",
     ),
-    row(Role::Offsets, "offsets", Way::In, Takes::NoStream, "instead of years: offsets in years from the base"),
+    row(
+        Role::Offsets,
+        "offsets",
+        Way::In,
+        Takes::NoStream,
+        "instead of years: offsets in years from the base",
+    ),
     row(Role::Cost, "cost", Way::In, Takes::Stream, "a stream of costs, as long as the years"),
     row(Role::Benefit, "benefit", Way::In, Takes::Stream, "a stream of benefits, as long as the years"),
     row(Role::Flow, "flow", Way::In, Takes::Stream, "a stream of net flows, as long as the years"),
     row(Role::Costs, "costs", Way::In, Takes::NoStream, "a block of costs, labels first, one stream a row"),
-    row(Role::Benefits, "benefits", Way::In, Takes::NoStream, "a block of benefits, labels first, one stream a row"),
+    row(
+        Role::Benefits,
+        "benefits",
+        Way::In,
+        Takes::NoStream,
+        "a block of benefits, labels first, one stream a row",
+    ),
     row(
         Role::Damage,
         "damage",
@@ -183,23 +195,53 @@ pub const ROLES: &[RoleInfo] = &[
         "a stream that is a benefit where it falls below the baseline's",
     ),
     row(Role::Baseline, "baseline", Way::In, Takes::NoStream, "the name of the baseline option"),
-    row(Role::Budget, "budget", Way::In, Takes::NoStream, "names of the streams that are the constrained cost"),
+    row(
+        Role::Budget,
+        "budget",
+        Way::In,
+        Takes::NoStream,
+        "names of the streams that are the constrained cost",
+    ),
     row(Role::Shared, "shared", Way::In, Takes::NoStream, "names of the streams that all options share"),
-    row(Role::Effect, "effect", Way::In, Takes::Stream, "physical effects (tonnes, life-years), as long as the years"),
+    row(
+        Role::Effect,
+        "effect",
+        Way::In,
+        Takes::Stream,
+        "physical effects (tonnes, life-years), as long as the years",
+    ),
     row(Role::Signs, "signs", Way::In, Takes::NoStream, "`costs negative` where costs are entered negative"),
     row(Role::Unit, "unit", Way::In, Takes::Stream, "unit of a stream: k, m, thousand, million or a number"),
     row(Role::Uplift, "uplift", Way::In, Takes::Stream, "share added to a stream (optimism bias): 20%"),
-    row(Role::Residual, "residual", Way::In, Takes::Stream, "value left at the last year, in the stream's unit"),
+    row(
+        Role::Residual,
+        "residual",
+        Way::In,
+        Takes::Stream,
+        "value left at the last year, in the stream's unit",
+    ),
     row(Role::Tail, "tail", Way::In, Takes::Stream, "what follows the last year: `growing 1%, for ever`"),
-    but(row(Role::PriceBasis, "price_basis", Way::In, Takes::NoStream, "`real 2022` or `nominal`"), PRICES_LATER),
-    but(row(Role::Prices, "prices", Way::In, Takes::NoStream, "a price index or an inflation rate"), PRICES_LATER),
-    but(row(Role::Growth, "growth", Way::In, Takes::Stream, "relative price growth of a stream"), PRICES_LATER),
+    but(
+        row(Role::PriceBasis, "price_basis", Way::In, Takes::NoStream, "`real 2022` or `nominal`"),
+        PRICES_LATER,
+    ),
+    but(
+        row(Role::Prices, "prices", Way::In, Takes::NoStream, "a price index or an inflation rate"),
+        PRICES_LATER,
+    ),
+    but(
+        row(Role::Growth, "growth", Way::In, Takes::Stream, "relative price growth of a stream"),
+        PRICES_LATER,
+    ),
     but(
         row(Role::Consumption, "consumption", Way::In, Takes::NoStream, "a path of consumption per head"),
         WELFARE_LATER,
     ),
     but(row(Role::Income, "income", Way::In, Takes::Stream, "income of a group"), WELFARE_LATER),
-    but(row(Role::Factor, "factor", Way::Out, Takes::MayStream, "a discount factor for each year"), SECOND_BASIS),
+    but(
+        row(Role::Factor, "factor", Way::Out, Takes::MayStream, "a discount factor for each year"),
+        SECOND_BASIS,
+    ),
     row(Role::Pv, "pv", Way::Out, Takes::MayStream, "present value by year, or the total in one cell"),
     row(Role::Rates, "rates", Way::Out, Takes::NoStream, "the workbook's own yearly rates"),
     row(Role::Npv, "npv", Way::Out, Takes::NoStream, "net present value, one cell"),
@@ -227,10 +269,7 @@ impl Role {
 
     /// Whether it is one stream of flows (a cost, benefit, flow or damage, or a block of them).
     pub fn is_stream(self) -> bool {
-        matches!(
-            self,
-            Role::Cost | Role::Benefit | Role::Flow | Role::Damage | Role::Costs | Role::Benefits
-        )
+        matches!(self, Role::Cost | Role::Benefit | Role::Flow | Role::Damage | Role::Costs | Role::Benefits)
     }
 
     /// Whether it is filled.

@@ -4,3 +4,4 @@ mod package;
 mod resolve;
 mod roles;
 mod small;
+mod suggest;

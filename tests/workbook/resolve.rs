@@ -76,7 +76,10 @@ fn a_plain_appraisal_is_read_whole() {
 #[test]
 fn years_may_run_down_a_column() {
     let read = Small::default()
-        .sheet("Plan", "A1: 'Year | 'Works | 'Factor\nA2: 2025 | 1\nA3: 2026 | 2\nA4: 2027 | 3\nF1: 2025 | 0.035 | 0")
+        .sheet(
+            "Plan",
+            "A1: 'Year | 'Works | 'Factor\nA2: 2025 | 1\nA3: 2026 | 2\nA4: 2027 | 3\nF1: 2025 | 0.035 | 0",
+        )
         .names("hence_years A2:A4, hence_cost_works B2:B4, hence_factor C2:C4, hence_base F1, hence_basis G1")
         .resolved();
     assert_eq!(read.axes[0].direction, Direction::Down);
@@ -110,7 +113,8 @@ fn financial_years_numbers_dates_and_offsets() {
 
 #[test]
 fn dates_of_a_1904_workbook_are_1462_days_later() {
-    let read = plan("A1: 'Base | @44286\nA4: 'Year | @44286 | @44651 | @45016").from_1904().resolved();
+    let read =
+        plan("A1: 'Base | @44286\nA4: 'Year | @44286 | @44651 | @45016").counting_from_1904().resolved();
     assert!(read.date1904);
     assert_eq!(read.axes[0].labels[0], Label::Date(NaiveDate::from_ymd_opt(2025, 4, 1).unwrap()));
 }
@@ -130,9 +134,15 @@ fn offsets_stand_instead_of_years() {
 fn every_fault_in_the_years_has_its_cell() {
     let faults = |years: &str| plan(&format!("A4: 'Year | {years}")).problems();
     assert_eq!(faults("2025 | 2025 | 2026"), ["years-repeat Plan!C4 [hence_years]"]);
-    assert_eq!(faults("2025 | 2024 | 2026"), ["years-order Plan!C4 [hence_years]", "years-gap Plan!D4 [hence_years]"]);
+    assert_eq!(
+        faults("2025 | 2024 | 2026"),
+        ["years-order Plan!C4 [hence_years]", "years-gap Plan!D4 [hence_years]"]
+    );
     assert_eq!(faults("2025 | 2027 | 2028"), ["years-gap Plan!C4 [hence_years]"]);
-    assert_eq!(faults("2025 | | 2027"), ["years-blank Plan!C4 [hence_years]", "years-gap Plan!D4 [hence_years]"]);
+    assert_eq!(
+        faults("2025 | | 2027"),
+        ["years-blank Plan!C4 [hence_years]", "years-gap Plan!D4 [hence_years]"]
+    );
     assert_eq!(faults("2025 | '2026 | 2027")[0], "text-number Plan!C4 [hence_years]");
     assert_eq!(faults("2025 | #REF! | 2027")[0], "error-value Plan!C4 [hence_years]");
     assert_eq!(faults("2025 | 2026.5 | 2027")[0], "years-value Plan!C4 [hence_years]");
@@ -179,7 +189,9 @@ fn timing_and_basis_cells() {
     let Err(problems) = plan("A2: 'Basis | 3.5").resolve_with(&Options::default()) else { panic!("refused") };
     assert_eq!(
         lines(&problems),
-        ["Plan!B2 [hence_basis]: rate is 350% (stored 3.5), allowed -50% to 100% (rate-range) try: enter 3.5% or 0.035"]
+        [
+            "Plan!B2 [hence_basis]: rate is 350% (stored 3.5), allowed -50% to 100% (rate-range) try: enter 3.5% or 0.035"
+        ]
     );
     assert_eq!(plan("A2: 'Basis | @45748").problems(), ["basis-value Plan!B2 [hence_basis]"]);
     assert_eq!(plan("A2: 'Basis | ").problems(), ["blank-setting Plan!B2 [hence_basis]"]);
@@ -191,7 +203,10 @@ fn timing_and_basis_cells() {
 fn the_command_lines_basis_beats_the_cell_and_says_so() {
     let options = Options { basis: Some("uk-2003"), ..Options::default() };
     let read = plan("").resolve_with(&options).unwrap();
-    assert_eq!((read.choices[0].basis.value.as_str(), read.choices[0].basis.from.as_str()), ("uk-2003", "command line"));
+    assert_eq!(
+        (read.choices[0].basis.value.as_str(), read.choices[0].basis.from.as_str()),
+        ("uk-2003", "command line")
+    );
     assert_eq!(codes(&read.problems), ["basis-overridden Plan!B2 [hence_basis]"]);
     let same = Options { basis: Some("3.5%"), ..Options::default() };
     assert_eq!(codes(&plan("").resolve_with(&same).unwrap().problems), [""; 0]);
@@ -207,7 +222,9 @@ fn flows_are_numbers_or_blank_and_nothing_else() {
     assert_eq!(faults("100 | @45748 | 25"), ["date-value Plan!C5 [hence_cost_works]"]);
     assert_eq!(faults("100 | =B5/2> | 25"), ["no-result Plan!C5 [hence_cost_works]"]);
     assert_eq!(faults(" | | "), ["stream-blank Plan!B5:D5 [hence_cost_works]"]);
-    let Err(problems) = plan("A5: 'Works | 100 | '1,200 | 25").resolve_with(&Options::default()) else { panic!() };
+    let Err(problems) = plan("A5: 'Works | 100 | '1,200 | 25").resolve_with(&Options::default()) else {
+        panic!()
+    };
     assert!(problems[0].message.contains("stores the text `1,200`"), "{}", problems[0]);
     let read = plan("A5: 'Works | 100 | | 25").resolved();
     assert_eq!(read.choices[0].streams[0].raw, [100.0, 0.0, 25.0]);
@@ -228,8 +245,10 @@ fn a_stream_is_as_long_as_the_years_and_the_fix_is_offered() {
     let Err(problems) = small.resolve_with(&Options::default()) else { panic!("refused") };
     assert_eq!(
         lines(&problems),
-        ["Plan!B5:C5 [hence_cost_works]: has 2 cells across, allowed are 3 across, as the years Plan!B4:D4 (shape) \
-          try: let hence_cost_works refer to Plan!B5:D5"]
+        [
+            "Plan!B5:C5 [hence_cost_works]: has 2 cells across, allowed are 3 across, as the years Plan!B4:D4 (shape) \
+          try: let hence_cost_works refer to Plan!B5:D5"
+        ]
     );
     assert_eq!(named("", "hence_cost_works B5:B7").problems(), ["shape Plan!B5:B7 [hence_cost_works]"]);
     let shifted = named("E5: 1", "hence_cost_works C5:E5").problems();
@@ -244,7 +263,8 @@ fn costs_wholly_negative_stop_and_ask_unless_declared() {
     let small = plan("A5: 'Works | -100 | 0 | -25");
     assert_eq!(small.problems(), ["cost-sign Plan!B5:D5 [hence_cost_works]"]);
     for words in ["costs negative", "costs entered negative"] {
-        let read = named(&format!("A5: 'Works | -100 | 0 | -25\nA3: 'Signs | '{words}"), "hence_signs B3").resolved();
+        let read = named(&format!("A5: 'Works | -100 | 0 | -25\nA3: 'Signs | '{words}"), "hence_signs B3")
+            .resolved();
         assert_eq!(read.choices[0].streams.iter().map(|s| s.sign).collect::<Vec<_>>(), [-1.0, 1.0]);
     }
     let unclear = named("A3: 'Signs | 'yes", "hence_signs B3").problems();
@@ -281,16 +301,17 @@ fn units_uplifts_residuals_and_tails_are_of_their_stream() {
             "syntax Plan!I1 [hence_tail_works]"
         ]
     );
-    assert_eq!(named("F1: 'k", "hence_unit_wrks F1").problems(), ["unknown-stream Plan!F1 [hence_unit_wrks]"]);
+    assert_eq!(
+        named("F1: 'k", "hence_unit_wrks F1").problems(),
+        ["unknown-stream Plan!F1 [hence_unit_wrks]"]
+    );
 }
 
 #[test]
 fn effects_and_budget() {
-    let read = named(
-        "A8: 'Tonnes | 1 | 2 | 3\nF1: 'Works",
-        "hence_effect_tonnes_of_carbon B8:D8, hence_budget F1",
-    )
-    .resolved();
+    let read =
+        named("A8: 'Tonnes | 1 | 2 | 3\nF1: 'Works", "hence_effect_tonnes_of_carbon B8:D8, hence_budget F1")
+            .resolved();
     let choice = &read.choices[0];
     assert_eq!((choice.effects[0].name.as_str(), choice.effects[0].raw[2]), ("tonnes of carbon", 3.0));
     assert_eq!(choice.budget, ["works"]);
@@ -309,14 +330,11 @@ fn blocks_hold_a_stream_a_row_and_subtotals_are_left_out_by_name() {
         "hence_cost_works, hence_benefit_access, hence_factor B12:D12, hence_npv F9, hence_costs A5:D10, hence_pv_civil_works F10",
     );
     let read = small.resolved();
-    let names: Vec<_> = read.choices[0].streams.iter().map(|s| (s.name.as_str(), s.at.range.to_string())).collect();
+    let names: Vec<_> =
+        read.choices[0].streams.iter().map(|s| (s.name.as_str(), s.at.range.to_string())).collect();
     assert_eq!(
         names,
-        [
-            ("Civil works", "B5:D5".to_owned()),
-            ("Pumps", "B6:D6".to_owned()),
-            ("Power", "B10:D10".to_owned())
-        ]
+        [("Civil works", "B5:D5".to_owned()), ("Pumps", "B6:D6".to_owned()), ("Power", "B10:D10".to_owned())]
     );
     let notes: Vec<_> = read.problems.iter().map(|p| format!("{} {}", p.code, p.place)).collect();
     assert!(notes.contains(&"subtotal-left-out Plan!B7:D7 [All costs]".to_owned()), "{notes:?}");
@@ -355,7 +373,11 @@ fn a_stream_and_its_own_total_count_twice() {
     assert_eq!(scaled.problems(), [""; 0]);
     let linked = named("A8: 'Again | =B5>100 | =C5>50 | =D5>25", "hence_cost_again B8:D8");
     assert_eq!(linked.problems(), ["linked-streams Plan!B8:D8 [hence_cost_again]"]);
-    assert!(named("", "hence_cost_more B5:D5").problems().contains(&"overlap Plan!B5:D5 [hence_cost_more]".to_owned()));
+    assert!(
+        named("", "hence_cost_more B5:D5")
+            .problems()
+            .contains(&"overlap Plan!B5:D5 [hence_cost_more]".to_owned())
+    );
 }
 
 #[test]
@@ -377,7 +399,9 @@ fn held_contents_and_number_formats_of_targets() {
 #[test]
 fn shared_formulas_of_targets_are_expanded_where_they_stand() {
     // Two cells of one group, the text with the first (ISO/IEC 29500-1, 18.3.1.40).
-    let small = plan("A7: 'Factor | 1 | =[t=\"shared\" ref=\"C7:D7\" si=\"0\"]B7/(1+$B$2)>0.9 | =[t=\"shared\" si=\"0\"]>0.8");
+    let small = plan(
+        "A7: 'Factor | 1 | =[t=\"shared\" ref=\"C7:D7\" si=\"0\"]B7/(1+$B$2)>0.9 | =[t=\"shared\" si=\"0\"]>0.8",
+    );
     let read = small.resolved();
     let text = |held: &Held| match held {
         Held::Formula { text, .. } => text.clone(),
@@ -415,9 +439,7 @@ fn roles_from_the_command_line_beat_names() {
         ("base".to_owned(), "Plan!B1".to_owned()),
     ];
     let options = Options { roles: &given, basis: Some("3.5%") };
-    let small = Small::default()
-        .sheet("Plan", &cells(""))
-        .names("The_years B4:D4, hence_cost_works B5:D5");
+    let small = Small::default().sheet("Plan", &cells("")).names("The_years B4:D4, hence_cost_works B5:D5");
     let read = small.resolve_with(&options).unwrap();
     assert_eq!(read.choices[0].streams.len(), 1);
     assert_eq!(read.choices[0].streams[0].at.to_string(), "Plan!B6:D6");
@@ -435,7 +457,9 @@ fn roles_from_the_command_line_beat_names() {
 
 #[test]
 fn a_workbook_without_roles_says_what_is_missing_and_how_to_say_it() {
-    let Err(problems) = Small::default().sheet("Empty", "A1: 1").resolve_with(&Options::default()) else { panic!() };
+    let Err(problems) = Small::default().sheet("Empty", "A1: 1").resolve_with(&Options::default()) else {
+        panic!()
+    };
     assert_eq!(problems.len(), 1);
     assert_eq!(problems[0].code, "missing-role");
     for word in ["years", "stream", "basis", "range to fill"] {
@@ -458,8 +482,10 @@ fn slips_are_warnings_with_the_nearest_role() {
 
 #[test]
 fn the_report_on_names_lists_found_missing_and_slips() {
-    let report = named("", "hence_npv, hence_factor, hence_base, hence_yaers B4:D4, hence_verdict F1").report();
-    let found: Vec<_> = report.found.iter().map(|f| (f.name.as_str(), f.role.as_str(), f.place.to_string())).collect();
+    let report =
+        named("", "hence_npv, hence_factor, hence_base, hence_yaers B4:D4, hence_verdict F1").report();
+    let found: Vec<_> =
+        report.found.iter().map(|f| (f.name.as_str(), f.role.as_str(), f.place.to_string())).collect();
     assert!(found.contains(&("hence_cost_works", "cost: works", "Plan!B5:D5".to_owned())), "{found:?}");
     assert!(found.iter().any(|(name, ..)| *name == "hence_verdict"));
     assert_eq!(report.missing.len(), 2, "{:?}", report.missing);

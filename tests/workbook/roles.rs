@@ -87,9 +87,31 @@ fn case_underscores_and_marks_do_not_tell_names_apart() {
 fn the_table_holds_every_role_of_the_specification() {
     let words = |way| -> Vec<&str> { ROLES.iter().filter(|r| r.way == way).map(|r| r.word).collect() };
     for word in [
-        "base", "basis", "timing", "years", "offsets", "cost", "benefit", "flow", "costs", "benefits", "damage",
-        "baseline", "budget", "effect", "price_basis", "prices", "signs", "unit", "uplift", "residual", "tail",
-        "growth", "consumption", "income", "shared",
+        "base",
+        "basis",
+        "timing",
+        "years",
+        "offsets",
+        "cost",
+        "benefit",
+        "flow",
+        "costs",
+        "benefits",
+        "damage",
+        "baseline",
+        "budget",
+        "effect",
+        "price_basis",
+        "prices",
+        "signs",
+        "unit",
+        "uplift",
+        "residual",
+        "tail",
+        "growth",
+        "consumption",
+        "income",
+        "shared",
     ] {
         assert!(words(Way::In).contains(&word), "{word}");
     }

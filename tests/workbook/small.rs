@@ -55,7 +55,7 @@ impl Small {
     }
 
     /// Counts days from 1904.
-    pub fn from_1904(mut self) -> Self {
+    pub fn counting_from_1904(mut self) -> Self {
         self.date1904 = true;
         self
     }
@@ -80,7 +80,8 @@ impl Small {
 
     /// The package as bytes.
     pub fn bytes(&self) -> Vec<u8> {
-        let mut parts = vec![("_rels/.rels".to_owned(), relationships(&[("officeDocument", "xl/workbook.xml")]))];
+        let mut parts =
+            vec![("_rels/.rels".to_owned(), relationships(&[("officeDocument", "xl/workbook.xml")]))];
         let mut types = String::new();
         let (mut sheets, mut targets) = (String::new(), Vec::new());
         for (i, (name, data, after)) in self.sheets.iter().enumerate() {
@@ -88,8 +89,10 @@ impl Small {
             let _ = write!(sheets, r#"<sheet name="{}" sheetId="{n}" r:id="rId{n}"/>"#, escape(name));
             targets.push(("worksheet", format!("worksheets/sheet{n}.xml")));
             let kind = "application/vnd.openxmlformats-officedocument.spreadsheetml.worksheet+xml";
-            let _ = write!(types, r#"<Override PartName="/xl/worksheets/sheet{n}.xml" ContentType="{kind}"/>"#);
-            let sheet = format!("<worksheet xmlns=\"{MAIN}\"><sheetData>{data}</sheetData>{after}</worksheet>");
+            let _ =
+                write!(types, r#"<Override PartName="/xl/worksheets/sheet{n}.xml" ContentType="{kind}"/>"#);
+            let sheet =
+                format!("<worksheet xmlns=\"{MAIN}\"><sheetData>{data}</sheetData>{after}</worksheet>");
             parts.push((format!("xl/worksheets/sheet{n}.xml"), sheet));
         }
         targets.push(("styles", "styles.xml".to_owned()));
@@ -106,7 +109,8 @@ impl Small {
                 "<workbook xmlns=\"{MAIN}\" xmlns:r=\"{RELATIONS}\">{properties}<sheets>{sheets}</sheets>{names}</workbook>"
             ),
         ));
-        let targets: Vec<(&str, &str)> = targets.iter().map(|(kind, target)| (*kind, target.as_str())).collect();
+        let targets: Vec<(&str, &str)> =
+            targets.iter().map(|(kind, target)| (*kind, target.as_str())).collect();
         parts.push(("xl/_rels/workbook.xml.rels".to_owned(), relationships(&targets)));
         parts.push(("xl/styles.xml".to_owned(), STYLES.to_owned()));
         let content_types = format!(
@@ -140,7 +144,8 @@ impl Small {
 
     /// The same without options, expected to succeed.
     pub fn resolved(&self) -> Appraisal {
-        self.resolve_with(&Options::default()).unwrap_or_else(|problems| panic!("{}", lines(&problems).join("\n")))
+        self.resolve_with(&Options::default())
+            .unwrap_or_else(|problems| panic!("{}", lines(&problems).join("\n")))
     }
 
     /// Errors and warnings as `code place`, whether the run succeeds or not.
@@ -176,7 +181,8 @@ const BOOK: &str = "application/vnd.openxmlformats-officedocument.spreadsheetml"
 const STYLES: &str = r#"<styleSheet xmlns="http://schemas.openxmlformats.org/spreadsheetml/2006/main"><fonts count="1"><font/></fonts><fills count="1"><fill/></fills><borders count="1"><border/></borders><cellStyleXfs count="1"><xf/></cellStyleXfs><cellXfs count="4"><xf numFmtId="0" fontId="0" fillId="0" borderId="0"/><xf numFmtId="14" fontId="0" fillId="0" borderId="0" applyNumberFormat="1"/><xf numFmtId="49" fontId="0" fillId="0" borderId="0" applyNumberFormat="1"/><xf numFmtId="4" fontId="0" fillId="0" borderId="0" applyNumberFormat="1"/></cellXfs></styleSheet>"#;
 
 fn relationships(targets: &[(&str, &str)]) -> String {
-    let mut xml = "<Relationships xmlns=\"http://schemas.openxmlformats.org/package/2006/relationships\">".to_owned();
+    let mut xml =
+        "<Relationships xmlns=\"http://schemas.openxmlformats.org/package/2006/relationships\">".to_owned();
     for (i, (kind, target)) in targets.iter().enumerate() {
         let n = i + 1;
         let _ = write!(xml, r#"<Relationship Id="rId{n}" Type="{RELATIONS}/{kind}" Target="{target}"/>"#);
@@ -222,7 +228,8 @@ fn stored(cell: Cell, value: &str) -> String {
         let (formula, result) = formula.rsplit_once('>').expect("a formula and its result");
         let result = if result.is_empty() { String::new() } else { format!("<v>{result}</v>") };
         let attributes = formula.strip_prefix('[').and_then(|rest| rest.split_once(']'));
-        let (attributes, formula) = attributes.filter(|(list, _)| list.contains('=')).unwrap_or(("", formula));
+        let (attributes, formula) =
+            attributes.filter(|(list, _)| list.contains('=')).unwrap_or(("", formula));
         return format!("{start}><f {attributes}>{}</f>{result}</c>", escape(formula));
     }
     if value.starts_with('#') {

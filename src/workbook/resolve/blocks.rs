@@ -6,10 +6,10 @@ use crate::reading::{Grid, ReadCell, Value};
 use crate::references::{Cell, Range, SheetRange};
 use crate::roles::{Role, key};
 
-use super::{Context, note};
 use super::cells::{number, one};
 use super::counted::sum_of;
 use super::find::Named;
+use super::{Context, note};
 
 /// One row of a block (or column, where the years run down).
 struct Line {
@@ -59,7 +59,7 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
             match number(content, Place::cells(&named.at.sheet, one(*cell)).called(&name)) {
                 Ok(value) => raw.push(value.unwrap_or(0.0)),
                 Err(problem) => {
-                    context.report(problem);
+                    context.report(*problem);
                     raw.push(0.0);
                 }
             }
@@ -112,7 +112,11 @@ fn wrong_shape(named: &Named, axis: &Axis) -> Option<Problem> {
     let problem = Problem::error(
         "block-shape",
         named.place(),
-        format!("has {long} {what}, allowed are {}: one of labels and {years} as the years {}", years + 1, axis.at),
+        format!(
+            "has {long} {what}, allowed are {}: one of labels and {years} as the years {}",
+            years + 1,
+            axis.at
+        ),
     );
     Some(problem.hint(format!("let {} refer to {fixed}", named.from)))
 }
@@ -126,12 +130,16 @@ fn lines(grid: &Grid, direction: Direction) -> Vec<Line> {
     count
         .map(|i| {
             let (label_at, start, end) = match direction {
-                Direction::Across => {
-                    (Cell { row: i, col: first.col }, Cell { row: i, col: first.col + 1 }, Cell { row: i, col: last.col })
-                }
-                Direction::Down => {
-                    (Cell { row: first.row, col: i }, Cell { row: first.row + 1, col: i }, Cell { row: last.row, col: i })
-                }
+                Direction::Across => (
+                    Cell { row: i, col: first.col },
+                    Cell { row: i, col: first.col + 1 },
+                    Cell { row: i, col: last.col },
+                ),
+                Direction::Down => (
+                    Cell { row: first.row, col: i },
+                    Cell { row: first.row + 1, col: i },
+                    Cell { row: last.row, col: i },
+                ),
             };
             let at = Range { first: start, last: end };
             let cells = at.cells().map(|cell| (cell, grid.get(cell).cloned().unwrap_or_default())).collect();
@@ -145,7 +153,9 @@ fn lines(grid: &Grid, direction: Direction) -> Vec<Line> {
 fn label(context: &mut Context, named: &Named, line: &Line) -> Option<String> {
     let numbers = line.cells.iter().any(|(_, cell)| cell.value != Value::Blank || cell.formula.is_some());
     match &line.label {
-        Value::Text(text) if !key(text).is_empty() => Some(text.split_whitespace().collect::<Vec<_>>().join(" ")),
+        Value::Text(text) if !key(text).is_empty() => {
+            Some(text.split_whitespace().collect::<Vec<_>>().join(" "))
+        }
         Value::Blank | Value::Text(_) if !numbers => None,
         _ => {
             let place = Place::cells(&named.at.sheet, one(line.label_at)).called(&named.from);

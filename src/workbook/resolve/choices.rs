@@ -116,10 +116,10 @@ fn report_missing(context: &mut Context, split: &Split, told: Option<&str>) {
     for group in &split.groups {
         let place = || {
             let first = group.named.first();
-            first.map_or_else(|| Place::name(&group.name), |named| Place {
-                sheet: Some(named.at.sheet.clone()),
-                ..Place::name(&group.name)
-            })
+            first.map_or_else(
+                || Place::name(&group.name),
+                |named| Place { sheet: Some(named.at.sheet.clone()), ..Place::name(&group.name) },
+            )
         };
         let shared_stream = split.shared.iter().any(|named| named.name.role.is_stream());
         let mut lacks = Lacks::default();
@@ -139,8 +139,12 @@ fn report_missing(context: &mut Context, split: &Split, told: Option<&str>) {
             && needs_base(context, years)
         {
             context.report(
-                Problem::error("missing-role", place(), format!("the option `{}` has no base year", group.name))
-                    .hint("enter the year to which values are discounted in a cell, and name it hence_base"),
+                Problem::error(
+                    "missing-role",
+                    place(),
+                    format!("the option `{}` has no base year", group.name),
+                )
+                .hint("enter the year to which values are discounted in a cell, and name it hence_base"),
             );
         }
     }
@@ -148,7 +152,8 @@ fn report_missing(context: &mut Context, split: &Split, told: Option<&str>) {
 
 /// Years count from their own zero only where they are year numbers.
 fn needs_base(context: &mut Context, years: &Named) -> bool {
-    let first = context.grid(&years.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()));
+    let first =
+        context.grid(&years.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()));
     !matches!(first, Some(crate::reading::Value::Number(n)) if n < 1000.0)
 }
 
@@ -173,11 +178,12 @@ impl Lacks {
         }
         let role = self.names[0].trim_start_matches("hence_").split("__").next().unwrap_or_default();
         Some(
-            Problem::error("missing-role", place, format!("{whose} has no {}", self.what.join(", no "))).hint(format!(
-                "select the cells and type {} into the Name Box; or give them with --role, as --role \
+            Problem::error("missing-role", place, format!("{whose} has no {}", self.what.join(", no ")))
+                .hint(format!(
+                    "select the cells and type {} into the Name Box; or give them with --role, as --role \
                  {role}=Sheet1!C3:L3; `hence start FILE` makes a ready-named workbook",
-                self.names.join(", ")
-            )),
+                    self.names.join(", ")
+                )),
         )
     }
 }
@@ -207,9 +213,12 @@ fn budget(context: &mut Context, split: &Split, group: &Group, choice: &Choice) 
 }
 
 fn has_stream(split: &Split, text: &str) -> bool {
-    split.groups.iter().flat_map(|group| &group.named).chain(&split.shared).any(|named| {
-        named.name.role.is_stream() && named.name.stream.as_deref().map(key) == Some(key(text))
-    })
+    split
+        .groups
+        .iter()
+        .flat_map(|group| &group.named)
+        .chain(&split.shared)
+        .any(|named| named.name.role.is_stream() && named.name.stream.as_deref().map(key) == Some(key(text)))
 }
 
 /// The names of an option's streams in one phrase.
@@ -220,19 +229,23 @@ pub(super) fn stream_names(choice: &Choice) -> String {
 
 /// Units, uplifts and the like of streams that there are none of.
 fn check_settings(context: &mut Context, split: &Split, choices: &[Choice]) {
-    let setting = |named: &&Named| {
-        matches!(named.name.role, Role::Unit | Role::Uplift | Role::Residual | Role::Tail)
-    };
-    let own = split.groups.iter().zip(choices).map(|(group, choice)| (&group.named, std::slice::from_ref(choice)));
+    let setting =
+        |named: &&Named| matches!(named.name.role, Role::Unit | Role::Uplift | Role::Residual | Role::Tail);
+    let own =
+        split.groups.iter().zip(choices).map(|(group, choice)| (&group.named, std::slice::from_ref(choice)));
     let all: Vec<_> = own.chain(std::iter::once((&split.shared, choices))).collect();
     for (named, choices) in all {
         for named in named.iter().filter(setting) {
             let stream = named.name.stream.as_deref().unwrap_or_default();
-            let known = choices.iter().flat_map(|choice| &choice.streams).any(|s| key(&s.name) == key(stream));
+            let known =
+                choices.iter().flat_map(|choice| &choice.streams).any(|s| key(&s.name) == key(stream));
             if !known {
                 context.report(
                     Problem::error("unknown-stream", named.place(), format!("there is no stream `{stream}`"))
-                        .hint(format!("the streams are {}", choices.first().map(stream_names).unwrap_or_default())),
+                        .hint(format!(
+                            "the streams are {}",
+                            choices.first().map(stream_names).unwrap_or_default()
+                        )),
                 );
             }
         }
@@ -240,7 +253,8 @@ fn check_settings(context: &mut Context, split: &Split, choices: &[Choice]) {
     let common: Vec<&String> = split.common.iter().collect();
     for stream in common {
         let blocks = ROLES.iter().any(|info| info.role.is_stream() && key(info.word) == *stream);
-        let found = split.shared.iter().any(|named| named.name.stream.as_deref().map(key).as_ref() == Some(stream));
+        let found =
+            split.shared.iter().any(|named| named.name.stream.as_deref().map(key).as_ref() == Some(stream));
         if !found && !blocks {
             let named = split.shared.iter().find(|named| named.name.role == Role::Shared);
             let place = named.map_or_else(Place::default, Named::place);
@@ -255,14 +269,19 @@ fn check_settings(context: &mut Context, split: &Split, choices: &[Choice]) {
 /// The option that the others are compared with.
 fn baseline(context: &mut Context, split: &Split) -> Option<usize> {
     let named = split.shared.iter().find(|named| named.name.role == Role::Baseline);
-    let own = split.groups.iter().flat_map(|group| &group.named).find(|named| named.name.role == Role::Baseline);
+    let own =
+        split.groups.iter().flat_map(|group| &group.named).find(|named| named.name.role == Role::Baseline);
     let named = named.or(own)?;
     let text = texts::text(context, named)?;
     let found = split.groups.iter().position(|group| key(&group.name) == key(&text));
     if found.is_none() {
         context.report(
-            Problem::error("unknown-option", named.place(), format!("`{text}` is no option of this workbook"))
-                .hint(format!("the options are {}", names_of(&split.groups))),
+            Problem::error(
+                "unknown-option",
+                named.place(),
+                format!("`{text}` is no option of this workbook"),
+            )
+            .hint(format!("the options are {}", names_of(&split.groups))),
         );
     }
     found

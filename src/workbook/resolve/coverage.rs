@@ -9,12 +9,14 @@ use crate::problem::Place;
 use crate::reading::Value;
 use crate::references::{Cell, Range, SheetRange};
 
-use super::{Context, note};
 use super::choices::Built;
 use super::counted::aligned;
+use super::{Context, note};
 
 /// Rows that are listed, at most; a sheet of data can hold a million.
 const MAX_ROWS_LISTED: usize = 5_000;
+/// Rows of one sheet that are looked at, at most.
+const MAX_ROWS_SEEN: usize = 100_000;
 
 /// A stretch of columns (or rows) of a sheet that years stand over.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -58,8 +60,12 @@ pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
                 let roles = roles.get(&at).cloned().unwrap_or_default();
                 let after_years = band.years.is_none_or(|years| index > years);
                 let wanted = !roles.is_empty() || line.numbers.len() > usize::from(!after_years);
-                (wanted && Some(index) != band.years)
-                    .then(|| Covered { at, heading: line.heading, roles, total: sum(&line.numbers) })
+                (wanted && Some(index) != band.years).then(|| Covered {
+                    at,
+                    heading: line.heading,
+                    roles,
+                    total: sum(&line.numbers),
+                })
             }));
         }
     }
@@ -67,7 +73,10 @@ pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
         context.report(note(
             "coverage-cut",
             Place::default(),
-            format!("{} numeric rows run along the years; the first {MAX_ROWS_LISTED} are listed", covered.len()),
+            format!(
+                "{} numeric rows run along the years; the first {MAX_ROWS_LISTED} are listed",
+                covered.len()
+            ),
         ));
         covered.truncate(MAX_ROWS_LISTED);
     }
@@ -100,7 +109,9 @@ fn bands(built: &Built) -> BTreeMap<String, Vec<Band>> {
             Direction::Across => {
                 Band { first: first.col, last: last.col, down: false, years: years.then_some(first.row) }
             }
-            Direction::Down => Band { first: first.row, last: last.row, down: true, years: years.then_some(first.col) },
+            Direction::Down => {
+                Band { first: first.row, last: last.row, down: true, years: years.then_some(first.col) }
+            }
         }
     };
     for axis in &built.axes {
@@ -133,6 +144,9 @@ fn lines(context: &mut Context, sheet: &str, band: Band) -> crate::problem::Resu
     let mut lines: BTreeMap<u32, Line> = BTreeMap::new();
     context.sheets.visit(sheet, |cell, value| {
         let (index, across) = band.turned(cell);
+        if lines.len() >= MAX_ROWS_SEEN && !lines.contains_key(&index) {
+            return;
+        }
         match value {
             Value::Number(number) if number.is_finite() && (band.first..=band.last).contains(&across) => {
                 let line = lines.entry(index).or_default();

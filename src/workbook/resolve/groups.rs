@@ -52,7 +52,9 @@ pub(super) fn split(context: &mut Context, named: Vec<Named>) -> Split {
         let from_sheet = named.scope.clone().filter(|sheet| sheets.contains(sheet));
         match named.name.option.clone().or(from_sheet) {
             Some(option) => {
-                let group = groups.entry(key(&option)).or_insert_with(|| Group { name: option.clone(), named: vec![] });
+                let group = groups
+                    .entry(key(&option))
+                    .or_insert_with(|| Group { name: option.clone(), named: vec![] });
                 add(context, &mut group.named, named);
             }
             None => add(context, &mut shared, named),
@@ -102,7 +104,9 @@ fn add(context: &mut Context, list: &mut Vec<Named>, named: Named) {
                 named.place(),
                 format!("`{}` is also {} [{}]", named.name.words(), twin.at, twin.from),
             )
-            .hint("keep one of the two names, or give each its option: two underscores and the option's name");
+            .hint(
+                "keep one of the two names, or give each its option: two underscores and the option's name",
+            );
             context.report(problem);
         }
     }

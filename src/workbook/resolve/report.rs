@@ -41,7 +41,8 @@ pub fn names(package: &Package, book: &Workbook) -> Result<NamesReport> {
     let mut report = NamesReport::default();
     let only = split.groups.len() == 1 && split.shared.is_empty();
     for group in &split.groups {
-        let option = (!only || group.named.iter().any(|named| named.name.option.is_some())).then(|| group.name.clone());
+        let option = (!only || group.named.iter().any(|named| named.name.option.is_some()))
+            .then(|| group.name.clone());
         report.found.extend(group.named.iter().map(|named| found(named, option.clone())));
     }
     report.found.extend(split.shared.iter().map(|named| found(named, None)));
@@ -53,15 +54,23 @@ pub fn names(package: &Package, book: &Workbook) -> Result<NamesReport> {
             report.found.push(Found { name: defined.name.clone(), role: name.words(), place, option: None });
         }
     }
-    let all: Vec<Role> =
-        split.groups.iter().flat_map(|group| &group.named).chain(&split.shared).map(|named| named.name.role).collect();
+    let all: Vec<Role> = split
+        .groups
+        .iter()
+        .flat_map(|group| &group.named)
+        .chain(&split.shared)
+        .map(|named| named.name.role)
+        .collect();
     let mut need = |has: bool, what: &str| {
         if !has {
             report.missing.push(what.to_owned());
         }
     };
     need(all.contains(&Role::Years) || all.contains(&Role::Offsets), "the years: hence_years");
-    need(all.iter().any(|role| role.is_stream()), "a stream of flows: hence_cost_works, hence_benefit_access");
+    need(
+        all.iter().any(|role| role.is_stream()),
+        "a stream of flows: hence_cost_works, hence_benefit_access",
+    );
     need(all.contains(&Role::Basis), "the basis: hence_basis (or --basis)");
     need(all.contains(&Role::Base) || all.contains(&Role::Offsets), "the base year: hence_base");
     need(all.iter().any(|role| role.is_output()), "a range to fill: hence_factor, hence_pv, hence_npv");

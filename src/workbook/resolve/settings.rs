@@ -16,7 +16,11 @@ const RATES: (f64, f64) = (-0.5, 1.0);
 const UPLIFTS: (f64, f64) = (-1.0, 5.0);
 
 /// The basis: the command line's, else the workbook's. Nothing where neither states one.
-pub(super) fn basis(context: &mut Context, named: Option<&Named>, told: Option<&str>) -> Option<Given<String>> {
+pub(super) fn basis(
+    context: &mut Context,
+    named: Option<&Named>,
+    told: Option<&str>,
+) -> Option<Given<String>> {
     let Some(told) = told else {
         let named = named?;
         let value = basis_text(context, named)?;
@@ -24,7 +28,8 @@ pub(super) fn basis(context: &mut Context, named: Option<&Named>, told: Option<&
     };
     if let Some(named) = named {
         // The cell is only compared here, so what is wrong with it does not matter.
-        let held = context.grid(&named.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()));
+        let held =
+            context.grid(&named.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()));
         let held = match held {
             Some(Value::Text(text)) => text.trim().to_owned(),
             Some(Value::Number(number)) => number.to_string(),
@@ -35,7 +40,11 @@ pub(super) fn basis(context: &mut Context, named: Option<&Named>, told: Option<&
                 Problem::warning(
                     "basis-overridden",
                     named.place(),
-                    format!("the workbook says `{}`, the command line `{}`: the command line counts", shown(&held), shown(told)),
+                    format!(
+                        "the workbook says `{}`, the command line `{}`: the command line counts",
+                        shown(&held),
+                        shown(told)
+                    ),
                 )
                 .hint("leave --basis out to use the workbook's own"),
             );
@@ -63,8 +72,12 @@ fn basis_text(context: &mut Context, named: &Named) -> Option<String> {
         }
         Value::Date(_) => {
             context.report(
-                Problem::error("basis-value", named.place(), "holds a date, allowed is a rate line, a schedule id or a number")
-                    .hint("enter 3.5% with a percent format, or a rate line as text"),
+                Problem::error(
+                    "basis-value",
+                    named.place(),
+                    "holds a date, allowed is a rate line, a schedule id or a number",
+                )
+                .hint("enter 3.5% with a percent format, or a rate line as text"),
             );
             None
         }
@@ -98,7 +111,8 @@ pub(super) fn tail(context: &mut Context, named: &Named) -> Option<Given<Tail>> 
 
 /// An error of the library about a text in a cell, the character shown.
 fn core_problem(error: &hence_core::Error, text: &str, place: Place) -> Problem {
-    let at = error.at().map(|at| format!(" at character {} of `{}`", at + 1, shown(text))).unwrap_or_default();
+    let at =
+        error.at().map(|at| format!(" at character {} of `{}`", at + 1, shown(text))).unwrap_or_default();
     let problem = Problem::error(error.code(), place, format!("{}{at}", error.message()));
     match error.hint() {
         Some(hint) => problem.hint(hint),
@@ -135,8 +149,12 @@ pub(super) fn signs(context: &mut Context, named: &Named) -> Option<Signs> {
     let parsed = parse_signs(&text);
     if parsed.is_none() {
         context.report(
-            Problem::error("signs", named.place(), format!("`{}` does not say which flows are negative", shown(&text)))
-                .hint("write `costs negative`, `costs and damages negative` or `costs positive`"),
+            Problem::error(
+                "signs",
+                named.place(),
+                format!("`{}` does not say which flows are negative", shown(&text)),
+            )
+            .hint("write `costs negative`, `costs and damages negative` or `costs positive`"),
         );
     }
     parsed
@@ -232,7 +250,7 @@ fn amount(context: &mut Context, named: &Named) -> Option<f64> {
             None
         }
         Err(problem) => {
-            context.report(problem);
+            context.report(*problem);
             None
         }
     }
@@ -245,9 +263,16 @@ mod tests {
     #[test]
     fn signs_in_words() {
         for text in ["costs negative", "Costs entered negative", "costs are entered as negative numbers"] {
-            assert_eq!(parse_signs(text), Some(Signs { declared: true, costs: true, damages: false }), "{text}");
+            assert_eq!(
+                parse_signs(text),
+                Some(Signs { declared: true, costs: true, damages: false }),
+                "{text}"
+            );
         }
-        assert_eq!(parse_signs("costs positive"), Some(Signs { declared: true, costs: false, damages: false }));
+        assert_eq!(
+            parse_signs("costs positive"),
+            Some(Signs { declared: true, costs: false, damages: false })
+        );
         assert!(parse_signs("costs and damages negative").unwrap().damages);
         for text in ["yes", "negative", "costs", "benefits negative", "costs negative, benefits positive"] {
             assert_eq!(parse_signs(text), None, "{text}");
@@ -256,9 +281,15 @@ mod tests {
 
     #[test]
     fn units_in_words() {
-        for (text, unit) in
-            [("k", 1e3), ("£k", 1e3), ("£'000", 1e3), ("£m", 1e6), ("Million", 1e6), ("bn", 1e9), ("1000", 1e3)]
-        {
+        for (text, unit) in [
+            ("k", 1e3),
+            ("£k", 1e3),
+            ("£'000", 1e3),
+            ("£m", 1e6),
+            ("Million", 1e6),
+            ("bn", 1e9),
+            ("1000", 1e3),
+        ] {
             assert_eq!(parse_unit(text), Some(unit), "{text}");
         }
         assert_eq!(parse_unit("dozen"), None);

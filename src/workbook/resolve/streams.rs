@@ -17,7 +17,8 @@ use super::{Context, blocks, note};
 
 /// The streams of an option, its own first, then the shared ones.
 pub(super) fn streams(context: &mut Context, split: &Split, group: &Group, axis: &Axis) -> Vec<Stream> {
-    let signs = split.of(group, Role::Signs).and_then(|named| settings::signs(context, named)).unwrap_or_default();
+    let signs =
+        split.of(group, Role::Signs).and_then(|named| settings::signs(context, named)).unwrap_or_default();
     let mut streams = Vec::new();
     for named in own_and_common(split, group, Role::is_stream) {
         match named.name.role {
@@ -90,7 +91,11 @@ fn row(context: &mut Context, named: &Named, axis: &Axis) -> Option<Vec<f64>> {
         );
     } else {
         for cell in read.blanks {
-            context.report(note("blank-zero", place(&named.at, cell, &named.from), "is blank and counts as 0"));
+            context.report(note(
+                "blank-zero",
+                place(&named.at, cell, &named.from),
+                "is blank and counts as 0",
+            ));
         }
     }
     Some(read.values)
@@ -112,8 +117,12 @@ pub(super) fn wrong_shape(named: &Named, axis: &Axis) -> Option<Problem> {
         Direction::Down => "down",
     };
     Some(
-        Problem::error("shape", named.place(), format!("has {found}, allowed are {years} {way}, as the years {}", axis.at))
-            .hint(format!("let {} refer to {}", named.from, beside_years(&named.at, axis))),
+        Problem::error(
+            "shape",
+            named.place(),
+            format!("has {found}, allowed are {years} {way}, as the years {}", axis.at),
+        )
+        .hint(format!("let {} refer to {}", named.from, beside_years(&named.at, axis))),
     )
 }
 
@@ -161,12 +170,20 @@ fn check_sign(context: &mut Context, stream: &Stream, signs: Signs) {
     let wholly_negative = has(-1.0) && !has(1.0);
     match stream.kind {
         StreamKind::Cost if wholly_negative && !signs.declared => context.report(
-            Problem::error("cost-sign", place(), "is negative in every year, and costs are positive unless said otherwise")
-                .hint("if costs are entered negative, write `costs negative` in a cell named hence_signs"),
+            Problem::error(
+                "cost-sign",
+                place(),
+                "is negative in every year, and costs are positive unless said otherwise",
+            )
+            .hint("if costs are entered negative, write `costs negative` in a cell named hence_signs"),
         ),
         StreamKind::Cost if signs.costs && has(1.0) && !has(-1.0) => context.report(
-            Problem::warning("cost-sign", place(), "is positive in every year, and hence_signs says costs are negative")
-                .hint("check the sign of this stream"),
+            Problem::warning(
+                "cost-sign",
+                place(),
+                "is positive in every year, and hence_signs says costs are negative",
+            )
+            .hint("check the sign of this stream"),
         ),
         StreamKind::Benefit if wholly_negative => context.report(
             Problem::warning("benefit-sign", place(), "is negative in every year, and benefits are positive")

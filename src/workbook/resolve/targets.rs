@@ -33,7 +33,8 @@ pub(super) fn add_shared(context: &mut Context, split: &Split, choices: &mut [Ch
                 && pair[0].timing.as_ref().map(|t| t.value) == pair[1].timing.as_ref().map(|t| t.value)
         });
         let by_year = matches!(named.name.role, Role::Factor | Role::Rates);
-        if by_year && alike
+        if by_year
+            && alike
             && let Some(choice) = choices.first_mut()
         {
             let axis = &axes[choice.axis];
@@ -89,8 +90,12 @@ fn target(context: &mut Context, named: &Named, choice: &Choice, axis: &Axis) ->
     } else if !single {
         let first = SheetRange { sheet: named.at.sheet.clone(), range: one(named.at.range.first) };
         context.report(
-            Problem::error("one-cell", named.place(), format!("covers {} cells, allowed is one", named.at.range.len()))
-                .hint(format!("let {} refer to {first}", named.from)),
+            Problem::error(
+                "one-cell",
+                named.place(),
+                format!("covers {} cells, allowed is one", named.at.range.len()),
+            )
+            .hint(format!("let {} refer to {first}", named.from)),
         );
         return None;
     }
@@ -161,14 +166,22 @@ pub(super) fn check(context: &mut Context, choices: &[Choice], axes: &[Axis]) {
         let place = || Place::cells(&target.at.sheet, target.at.range).called(&target.from);
         if let Some(other) = targets[..i].iter().find(|other| overlap(&other.at, &target.at)) {
             context.report(
-                Problem::error("target-overlap", place(), format!("shares cells with {} [{}]", other.at, other.from))
-                    .hint("give each result its own cells"),
+                Problem::error(
+                    "target-overlap",
+                    place(),
+                    format!("shares cells with {} [{}]", other.at, other.from),
+                )
+                .hint("give each result its own cells"),
             );
         }
         if let Some((at, from)) = inputs.iter().find(|(at, _)| overlap(at, &target.at)) {
             context.report(
-                Problem::error("target-overlap", place(), format!("would overwrite {at} [{from}], which is read"))
-                    .hint("let the result go to cells of its own"),
+                Problem::error(
+                    "target-overlap",
+                    place(),
+                    format!("would overwrite {at} [{from}], which is read"),
+                )
+                .hint("let the result go to cells of its own"),
             );
         }
         if let Some(facts) = context.facts(&target.at.sheet) {
@@ -186,13 +199,18 @@ fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(SheetRange, String)> {
     for choice in choices {
         inputs.extend(choice.base.at.iter().map(|at| (at.clone(), choice.base.from.clone())));
         inputs.extend(choice.basis.at.iter().map(|at| (at.clone(), choice.basis.from.clone())));
-        inputs.extend(choice.timing.iter().filter_map(|timing| Some((timing.at.clone()?, timing.from.clone()))));
+        inputs.extend(
+            choice.timing.iter().filter_map(|timing| Some((timing.at.clone()?, timing.from.clone()))),
+        );
         inputs.extend(choice.effects.iter().map(|effect| (effect.at.clone(), effect.name.clone())));
         for stream in &choice.streams {
             inputs.push((stream.at.clone(), stream.from.clone()));
             inputs.extend(stream.uplift.at.iter().map(|at| (at.clone(), stream.uplift.from.clone())));
-            inputs.extend(stream.residual.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));
-            inputs.extend(stream.tail.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));
+            inputs.extend(
+                stream.residual.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))),
+            );
+            inputs
+                .extend(stream.tail.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));
         }
     }
     inputs
@@ -206,8 +224,13 @@ fn refusals(target: &Target, facts: &SheetFacts) -> Vec<Problem> {
             let place = Place::cells(&target.at.sheet, one(cell)).called(&target.from);
             found.push(Problem::error(code, place, message).hint(hint));
         };
-        if let Some(merged) = facts.merged.iter().find(|merged| merged.contains(cell) && merged.first != cell) {
-            refuse("target-merged", format!("is hidden inside the merged cells {merged}"), "unmerge the cells");
+        if let Some(merged) = facts.merged.iter().find(|merged| merged.contains(cell) && merged.first != cell)
+        {
+            refuse(
+                "target-merged",
+                format!("is hidden inside the merged cells {merged}"),
+                "unmerge the cells",
+            );
         }
         if let Some(array) = facts.array_formulas.iter().find(|array| array.contains(cell)) {
             refuse(
@@ -268,7 +291,9 @@ fn warnings(target: &Target, facts: &SheetFacts) -> Vec<Problem> {
         warn("hidden", target.at.range, "has cells in hidden rows or columns".to_owned(), hint);
     }
     let ruled = |range: &Range| range.intersects(&target.at.range);
-    if let Some(rule) = facts.validations.iter().find(|rule| rule.kind != "none" && rule.ranges.iter().any(ruled)) {
+    if let Some(rule) =
+        facts.validations.iter().find(|rule| rule.kind != "none" && rule.ranges.iter().any(ruled))
+    {
         let hint = "check that the rule allows the results";
         warn("validation", target.at.range, format!("has a validation rule ({})", rule.kind), hint);
     }

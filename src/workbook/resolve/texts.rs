@@ -4,9 +4,9 @@ use crate::problem::{Place, Problem};
 use crate::reading::Value;
 use crate::references::Cell;
 
+use super::Context;
 use super::cells::{error_value, one, single};
 use super::find::Named;
-use super::Context;
 
 /// The text of a role's one cell; a number gives its shortest text. Nothing where it is blank.
 pub(super) fn text(context: &mut Context, named: &Named) -> Option<String> {
@@ -19,8 +19,16 @@ pub(super) fn text(context: &mut Context, named: &Named) -> Option<String> {
         }
         other => {
             context.report(
-                Problem::error("text-expected", named.place(), format!("holds {}, allowed is a text", kind(&other)))
-                    .hint(format!("enter what `{}` takes: {}", named.name.words(), named.name.role.info().what)),
+                Problem::error(
+                    "text-expected",
+                    named.place(),
+                    format!("holds {}, allowed is a text", kind(&other)),
+                )
+                .hint(format!(
+                    "enter what `{}` takes: {}",
+                    named.name.words(),
+                    named.name.role.info().what
+                )),
             );
             None
         }
@@ -29,8 +37,11 @@ pub(super) fn text(context: &mut Context, named: &Named) -> Option<String> {
 
 /// A setting that was named and left blank.
 pub(super) fn blank(named: &Named) -> Problem {
-    Problem::error("blank-setting", named.place(), "is blank")
-        .hint(format!("enter what `{}` takes: {}; or delete the name", named.name.words(), named.name.role.info().what))
+    Problem::error("blank-setting", named.place(), "is blank").hint(format!(
+        "enter what `{}` takes: {}; or delete the name",
+        named.name.words(),
+        named.name.role.info().what
+    ))
 }
 
 /// What kind of value a cell holds, in words.

@@ -19,12 +19,8 @@ fn names(read: &Appraisal) -> Vec<&str> {
 #[test]
 fn a_sheet_with_its_own_stream_and_output_is_an_option() {
     let own = "hence_cost_works B5:D5, hence_npv B9";
-    let read = inputs()
-        .sheet("Pumps", OPTION)
-        .own_names(own)
-        .sheet("Do nothing", OPTION)
-        .own_names(own)
-        .resolved();
+    let read =
+        inputs().sheet("Pumps", OPTION).own_names(own).sheet("Do nothing", OPTION).own_names(own).resolved();
     // In the order of the sheets.
     assert_eq!(names(&read), ["Pumps", "Do nothing"]);
     assert_eq!(read.axes.len(), 1);
@@ -74,7 +70,8 @@ fn options_by_suffix_in_the_order_of_their_cells() {
 #[test]
 fn a_stream_without_an_option_is_a_question_unless_listed_as_shared() {
     let own = "hence_cost_works B5:D5, hence_npv B9";
-    let loose = |small: Small| small.sheet("Pumps", OPTION).own_names(own).sheet("Wells", OPTION).own_names(own);
+    let loose =
+        |small: Small| small.sheet("Pumps", OPTION).own_names(own).sheet("Wells", OPTION).own_names(own);
     let small = loose(inputs().names("hence_cost_carbon B5:D5"));
     assert_eq!(small.problems(), ["loose-stream Inputs!B5:D5 [hence_cost_carbon]"]);
     let read = loose(inputs().names("hence_cost_carbon B5:D5, hence_shared B6")).resolved();
@@ -89,7 +86,8 @@ fn a_stream_without_an_option_is_a_question_unless_listed_as_shared() {
 #[test]
 fn a_result_without_an_option_is_refused_beside_options() {
     let own = "hence_cost_works B5:D5, hence_npv B9";
-    let two = |small: Small| small.sheet("Pumps", OPTION).own_names(own).sheet("Wells", OPTION).own_names(own);
+    let two =
+        |small: Small| small.sheet("Pumps", OPTION).own_names(own).sheet("Wells", OPTION).own_names(own);
     let small = two(inputs().names("hence_ratio F1"));
     assert_eq!(small.problems(), ["loose-target Inputs!F1 [hence_ratio]"]);
     // Factors are the same for options of one basis, so that one range serves all.
@@ -105,7 +103,8 @@ fn a_result_without_an_option_is_refused_beside_options() {
 #[test]
 fn the_baseline_is_named_by_its_option() {
     let own = "hence_damage_floods B5:D5, hence_npv B9";
-    let two = |small: Small| small.sheet("Pumps", OPTION).own_names(own).sheet("Do nothing", OPTION).own_names(own);
+    let two =
+        |small: Small| small.sheet("Pumps", OPTION).own_names(own).sheet("Do nothing", OPTION).own_names(own);
     let read = two(inputs().names("hence_baseline B3")).resolved();
     assert_eq!(read.baseline, Some(1));
     assert_eq!(read.choices[0].streams[0].kind, StreamKind::Damage);
@@ -124,9 +123,8 @@ fn two_ranges_for_one_role_are_a_question() {
 
 #[test]
 fn an_option_that_lacks_something_is_named() {
-    let small = inputs()
-        .sheet("Pumps", OPTION)
-        .names("hence_cost_works__a B5:D5, hence_npv__a B9, hence_npv__b F9");
+    let small =
+        inputs().sheet("Pumps", OPTION).names("hence_cost_works__a B5:D5, hence_npv__a B9, hence_npv__b F9");
     let problems = small.problems();
     assert_eq!(problems, ["missing-role Pumps [b]"]);
 }

@@ -46,10 +46,15 @@ fn whole_rows_and_columns() {
 
 #[test]
 fn roles_of_a_later_version_are_refused_by_name() {
-    for name in
-        ["hence_price_basis", "hence_prices", "hence_growth_works", "hence_basis_health", "hence_factor_health",
-         "hence_consumption", "hence_income_low"]
-    {
+    for name in [
+        "hence_price_basis",
+        "hence_prices",
+        "hence_growth_works",
+        "hence_basis_health",
+        "hence_factor_health",
+        "hence_consumption",
+        "hence_income_low",
+    ] {
         let problems = named("", &format!("{name} F1")).problems();
         assert_eq!(problems, [format!("unsupported-role [{name}]")], "{name}");
     }
@@ -101,7 +106,8 @@ fn what_is_warned_of_and_filled_all_the_same() {
 
 #[test]
 fn problems_come_in_sheet_order_and_neighbours_as_one() {
-    let problems = plan("A1: 'Base | 'soon\nA5: 'Works | 'a | 'a | 'a\nA6: 'Access | #N/A | 80 | 90").problems();
+    let problems =
+        plan("A1: 'Base | 'soon\nA5: 'Works | 'a | 'a | 'a\nA6: 'Access | #N/A | 80 | 90").problems();
     assert_eq!(
         problems,
         [
