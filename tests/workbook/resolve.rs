@@ -183,6 +183,8 @@ fn timing_and_basis_cells() {
     let timing = small.resolved().choices[0].timing.clone().unwrap();
     assert_eq!(timing.value, Timing { flows: Position::Middle, base: Position::Start });
     assert_eq!(timing.at.unwrap().to_string(), "Plan!B3");
+    let truth = named("A3: 'Timing | TRUE", "hence_timing B3").problems();
+    assert_eq!(truth, ["text-expected Plan!B3 [hence_timing]"]);
     let wrong = named("A3: 'Timing | 'flows noon", "hence_timing B3").problems();
     assert_eq!(wrong, ["syntax Plan!B3 [hence_timing]"]);
     assert_eq!(plan("A2: 'Basis | 3.5").problems(), ["rate-range Plan!B2 [hence_basis]"]);
@@ -269,6 +271,10 @@ fn costs_wholly_negative_stop_and_ask_unless_declared() {
     }
     let unclear = named("A3: 'Signs | 'yes", "hence_signs B3").problems();
     assert_eq!(unclear, ["signs Plan!B3 [hence_signs]"]);
+    assert_eq!(
+        plan("A6: 'Access | -1 | 0 | -2").problems(),
+        ["benefit-sign Plan!B6:D6 [hence_benefit_access]"]
+    );
     // A credit among costs is no question.
     assert_eq!(plan("A5: 'Works | 100 | -5 | 25").problems(), [""; 0]);
 }
@@ -350,6 +356,8 @@ fn faults_of_blocks() {
     };
     assert_eq!(block("", "B5:D6"), ["block-shape Plan!B5:D6 [hence_costs]"]);
     assert_eq!(block("A6: 'Works | 1 | 2 | 3", "A5:D6"), ["block-label Plan!B6:D6 [Works]"]);
+    assert_eq!(block("A5: 'Works\nA6: 'Pumps", "A5:D6"), ["block-empty Plan!A5:D6 [hence_costs]"]);
+    assert_eq!(block("", "A4:D5"), [""; 0], "the years may head the block");
     assert_eq!(block("A6: | 1 | 2 | 3", "A5:D6"), ["block-label Plan!A6 [hence_costs]"]);
     assert_eq!(block("A6: 'Pumps | 1 | 'x | 3", "A5:D6"), ["text-value Plan!C6 [Pumps]"]);
 }
