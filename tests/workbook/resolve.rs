@@ -384,7 +384,7 @@ fn a_stream_and_its_own_total_count_twice() {
     assert!(
         named("", "hence_cost_more B5:D5")
             .problems()
-            .contains(&"overlap Plan!B5:D5 [hence_cost_more]".to_owned())
+            .contains(&"overlap Plan!B5:D5 [hence_cost_works]".to_owned())
     );
 }
 

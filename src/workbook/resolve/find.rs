@@ -75,6 +75,10 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
             None => kept.push(named),
         }
     }
+    // Programs write names in orders of their own; that of the cells is the analyst's.
+    kept.sort_by_cached_key(|named| {
+        (context.book.sheet_index(&named.at.sheet), named.at.range, named.name.role, named.from.clone())
+    });
     kept
 }
 
