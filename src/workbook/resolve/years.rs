@@ -42,8 +42,7 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
     };
     let grid = context.grid(&named.at)?;
     let date1904 = context.book.date1904;
-    let before = context.problems.len();
-    let mut labels: Vec<Label> = Vec::new();
+    let mut labels: Vec<Option<Label>> = Vec::new();
     for (cell, content) in grid.iter() {
         let place = Place::cells(&named.at.sheet, one(cell)).called(&named.from);
         let read = if named.name.role == Role::Offsets {
@@ -53,16 +52,22 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
         };
         match read {
             Ok(label) => {
-                if let Some(problem) = labels.last().and_then(|last| step(last, &label, place)) {
+                let last = labels.last().and_then(Option::as_ref);
+                if let Some(problem) = last.and_then(|last| step(last, &label, place)) {
                     context.report(problem);
                 }
-                labels.push(label);
+                labels.push(Some(label));
             }
-            Err(problem) => context.report(*problem),
+            Err(problem) => {
+                context.report(*problem);
+                labels.push(None);
+            }
         }
     }
-    let whole = !context.problems[before..].iter().any(|p| p.severity == crate::problem::Severity::Error);
-    whole.then(|| Axis { at: named.at.clone(), direction, labels })
+    // A faulty year ends the run, but not before the flows beside it are checked too.
+    let any = labels.iter().flatten().next()?.clone();
+    let labels = labels.into_iter().map(|label| label.unwrap_or_else(|| any.clone())).collect();
+    Some(Axis { at: named.at.clone(), direction, labels })
 }
 
 /// One cell of the years.
