@@ -5,11 +5,11 @@
 
 pub mod appraisal;
 pub mod check;
+pub mod model;
 pub mod fill;
 pub mod formulas;
 pub mod graft;
 pub mod layout;
-pub mod model;
 pub mod names_edit;
 pub mod outcome;
 mod own;
@@ -27,8 +27,8 @@ pub mod schedules;
 pub mod sheets;
 mod splice;
 pub mod stale;
-
 pub mod styles;
+pub mod suggest;
 pub mod tolerance;
 pub mod valuation;
 pub mod verify;
