@@ -17,6 +17,7 @@ pub mod problem;
 pub mod references;
 pub mod sheets;
 mod splice;
+pub mod stale;
 pub mod styles;
 pub mod verify;
 pub mod writer;

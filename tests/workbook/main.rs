@@ -1,6 +1,11 @@
 //! Tests of the workbook crate.
 mod formulas;
 mod graft;
+mod model;
+mod names_edit;
 mod package;
 mod patch;
+mod references;
 mod scenario;
+mod small;
+mod stale;
