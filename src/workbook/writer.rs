@@ -342,7 +342,8 @@ fn write_cell(out: &mut Worksheet<'_>, cell: Cell, content: &Content, format: &F
             match cached {
                 Cached::Number(x) => out.write_formula_num(row, col, &text, Some(format), *x),
                 Cached::Text(s) => out.write_formula_str(row, col, &text, Some(format), &escaped(&legal(s))),
-                Cached::None => out.write_formula(row, col, &text, Some(format)),
+                // An empty result: zero would be believed by programs that do not recalculate.
+                Cached::None => out.write_formula_str(row, col, &text, Some(format), ""),
             }
         }
     }

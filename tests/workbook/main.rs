@@ -7,5 +7,6 @@ mod package;
 mod patch;
 mod references;
 mod scenario;
+mod sheets;
 mod small;
 mod stale;
