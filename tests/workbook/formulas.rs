@@ -45,7 +45,11 @@ fn present_values_multiply_flows_and_the_analysts_factors() {
     let layout = Layout::new(&a, &o, &names);
     let writes = target_writes(&a, &o, &layout, 1, &a.choices[1].targets[1], true);
     assert_eq!(formula(&writes[0]), "-1000*(1+$F$1)*C10*C$5");
-    assert_eq!(formula(&writes[9]), "(-1000*(1+$F$1)*L10+1000*$G$1)*L$5", "the residual lowers the last cost");
+    assert_eq!(
+        formula(&writes[9]),
+        "(-1000*(1+$F$1)*L10+1000*$G$1)*L$5",
+        "the residual lowers the last cost"
+    );
     let net = target_writes(&a, &o, &layout, 1, &a.choices[1].targets[2], true);
     assert_eq!(formula(&net[0]), "(-(-1000*(1+$F$1)*C10)+C11-C12)*C$5");
     let total = pv_expression(&a, &o, &layout, 1, 1, "It's a liner").unwrap();
@@ -90,7 +94,10 @@ fn totals_come_from_the_table_and_use_increments() {
     // has three streams, three sums, three increments and three measures in rows 8 to 19.
     let role = |role: TargetRole| a.choices[1].targets.iter().find(|t| t.role == role).unwrap();
     let npv = target_writes(&a, &o, &layout, 1, role(TargetRole::Npv), true);
-    assert_eq!(npv[0], CellWrite::Formula("Discounting!$K$29".into(), Cached::Number(o[1].increment.unwrap().npv)));
+    assert_eq!(
+        npv[0],
+        CellWrite::Formula("Discounting!$K$29".into(), Cached::Number(o[1].increment.unwrap().npv))
+    );
     let net = target_writes(&a, &o, &layout, 1, role(TargetRole::PvTotal(None)), true);
     assert_eq!(net[0], CellWrite::Formula("Discounting!$K$26".into(), Cached::Number(o[1].absolute.npv)));
     let ratio = target_writes(&a, &o, &layout, 0, role(TargetRole::Ratio), false);
@@ -129,7 +136,8 @@ fn a_formula_that_would_be_too_long_gives_way_to_the_table() {
     a.choices[1].streams[0].uplift.at.as_mut().unwrap().sheet = "x".repeat(9_000);
     let layout = Layout::new(&a, &o, &SheetNames::choose(&[]));
     assert_eq!(pv_expression(&a, &o, &layout, 1, 0, "S"), None);
-    let total = a.choices[1].targets.iter().find(|t| t.role == TargetRole::PvTotal(Some("works".into()))).unwrap();
+    let total =
+        a.choices[1].targets.iter().find(|t| t.role == TargetRole::PvTotal(Some("works".into()))).unwrap();
     let writes = target_writes(&a, &o, &layout, 1, total, true);
     assert_eq!(formula(&writes[0]), "Discounting!$K$21");
 }

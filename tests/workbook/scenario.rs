@@ -66,7 +66,14 @@ fn labels(case: &Case) -> Vec<Label> {
         .collect()
 }
 
-fn stream(case: &Case, sheet: &str, k: u32, name: &str, kind: StreamKind, flow: impl Fn(usize) -> f64) -> Stream {
+fn stream(
+    case: &Case,
+    sheet: &str,
+    k: u32,
+    name: &str,
+    kind: StreamKind,
+    flow: impl Fn(usize) -> f64,
+) -> Stream {
     Stream {
         name: name.into(),
         kind,
@@ -82,14 +89,16 @@ fn stream(case: &Case, sheet: &str, k: u32, name: &str, kind: StreamKind, flow: 
 }
 
 fn target(role: TargetRole, at: SheetRange) -> Target {
-    let n = ((at.range.last.row - at.range.first.row) + (at.range.last.col - at.range.first.col) + 1) as usize;
+    let n =
+        ((at.range.last.row - at.range.first.row) + (at.range.last.col - at.range.first.col) + 1) as usize;
     Target { role, from: "test".into(), at, held: vec![Held::Blank; n], formats: vec![None; n] }
 }
 
 /// An option on a sheet of its own: years in line 3, factors in line 4, streams from line 9 (from 0).
 fn option(case: &Case, sheet: &str, axis: usize, strong: f64, full: bool) -> Choice {
     let s = sheet;
-    let mut works = stream(case, s, 9, "works", StreamKind::Cost, |i| if i < 3 { -40.0 * strong } else { -1.5 });
+    let mut works =
+        stream(case, s, 9, "works", StreamKind::Cost, |i| if i < 3 { -40.0 * strong } else { -1.5 });
     works.sign = -1.0;
     works.unit = 1_000.0;
     works.uplift = given(0.2, Some(cell(s, 0, 5)));
@@ -146,10 +155,8 @@ fn option(case: &Case, sheet: &str, axis: usize, strong: f64, full: bool) -> Cho
 pub fn appraisal(case: &Case) -> Appraisal {
     let names = ["Do nothing", "It's a liner"];
     let axis = |s: &str| Axis { at: line(case, s, 3), direction: case.direction, labels: labels(case) };
-    let choices: Vec<Choice> = vec![
-        option(case, names[0], 0, 1.0, false),
-        option(case, names[1], 1, 2.5, true),
-    ];
+    let choices: Vec<Choice> =
+        vec![option(case, names[0], 0, 1.0, false), option(case, names[1], 1, 2.5, true)];
     let coverage = choices
         .iter()
         .flat_map(|c| &c.streams)
@@ -195,7 +202,8 @@ fn offset(case: &Case, label: &Label) -> f64 {
 
 pub fn outcomes(case: &Case, appraisal: &Appraisal) -> Vec<ChoiceOutcome> {
     let basis = Basis::parse(case.basis, &Catalogue::builtin()).unwrap();
-    let mut all: Vec<ChoiceOutcome> = appraisal.choices.iter().map(|c| outcome(case, appraisal, c, &basis)).collect();
+    let mut all: Vec<ChoiceOutcome> =
+        appraisal.choices.iter().map(|c| outcome(case, appraisal, c, &basis)).collect();
     let base = all[0].absolute;
     for o in &mut all {
         let (a, n) = (o.absolute, o.annuity);
@@ -244,9 +252,8 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
             StreamOutcome { undiscounted: flows.iter().sum(), flows, pv_by_year, pv_tail, pv }
         })
         .collect();
-    let net: Vec<f64> = (0..labels.len())
-        .map(|i| streams[1].flows[i] - streams[0].flows[i] - streams[2].flows[i])
-        .collect();
+    let net: Vec<f64> =
+        (0..labels.len()).map(|i| streams[1].flows[i] - streams[0].flows[i] - streams[2].flows[i]).collect();
     let pv_costs = streams[0].pv;
     let pv_benefits = streams[1].pv - streams[2].pv;
     let service_years = length.floor() as u32;

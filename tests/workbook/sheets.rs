@@ -6,11 +6,14 @@ use std::path::Path;
 use std::process::Command;
 
 use calamine::{Data, Reader, Xlsx, open_workbook};
-use hence_core::{Position, Timing};
+use hence_core::{Basis, Catalogue, Position, Timing, Where};
 use hence_workbook::appraisal::{Appraisal, Direction, Held, TargetRole};
 use hence_workbook::formulas::{nth, target_writes};
+use hence_workbook::graft::Graft;
 use hence_workbook::layout::{LabelValue, Layout, label_value};
+use hence_workbook::names_edit::OldName;
 use hence_workbook::outcome::ChoiceOutcome;
+use hence_workbook::package::Package;
 use hence_workbook::patch::{Cached, CellWrite};
 use hence_workbook::references::{Cell, Range, SheetRange};
 use hence_workbook::sheets::*;
@@ -40,16 +43,40 @@ fn cases() -> Vec<Case> {
         case("2.5% to 2050, 1.5% after", END, Labels::Financial, Across, true),
         case("4% to 10, 3% to 30, 2% after; whole horizon by flow", END, Labels::Numbers, Across, true),
         case("4% to 10, 3% to 30, 2% after; whole horizon by length", MIDDLE, Labels::Years, Down, true),
-        case("3.9% at 3, 4% at 10, 4.2% at 30; whole horizon by flow, interpolated", END, Labels::Years, Down, true),
-        case("3.9% at 3, 4% at 10, 4.2% at 30; whole horizon by length, interpolated", END, Labels::Years, Across, true),
+        case(
+            "3.9% at 3, 4% at 10, 4.2% at 30; whole horizon by flow, interpolated",
+            END,
+            Labels::Years,
+            Down,
+            true,
+        ),
+        case(
+            "3.9% at 3, 4% at 10, 4.2% at 30; whole horizon by length, interpolated",
+            END,
+            Labels::Years,
+            Across,
+            true,
+        ),
         case("preference 0.5%, hazard 1%, elasticity 1, growth 2%", END, Labels::Years, Across, true),
         case("preference 1%, elasticity 2, growth 2%; exact", MIDDLE, Labels::Years, Down, true),
         case("preference 1%, elasticity 2, growth 2% to 50, 1% after", MIDDLE, Labels::Years, Across, true),
-        case("preference 1%, elasticity 2, growth 2% to 50, 1% after; exact", END, Labels::Numbers, Down, true),
+        case(
+            "preference 1%, elasticity 2, growth 2% to 50, 1% after; exact",
+            END,
+            Labels::Numbers,
+            Down,
+            true,
+        ),
         case("preference 1%, elasticity 2, growth 2% sd 3.6%", END, Labels::Years, Across, true),
         case("gamma mean 4% sd 3%", MIDDLE, Labels::Years, Across, true),
         case("0.5 of (1%), 0.5 of (7% continuous)", END, Labels::Years, Down, false),
-        case("0.25 of (3.5% to 30, 3% after), 0.75 of (gamma mean 4% sd 3%)", AVERAGED, Labels::Years, Across, true),
+        case(
+            "0.25 of (3.5% to 30, 3% after), 0.75 of (gamma mean 4% sd 3%)",
+            AVERAGED,
+            Labels::Years,
+            Across,
+            true,
+        ),
     ]
 }
 
@@ -57,7 +84,6 @@ struct Audit {
     appraisal: Appraisal,
     outcomes: Vec<ChoiceOutcome>,
     layout: Layout,
-    cells: Vec<TargetCell>,
     composed: Composed,
 }
 
@@ -120,7 +146,7 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
         differs: &differs,
     };
     let composed = compose(&input, &layout);
-    Audit { appraisal, outcomes, layout, cells, composed }
+    Audit { appraisal, outcomes, layout, composed }
 }
 
 /// The analyst's sheets as the fill leaves them.
@@ -160,8 +186,7 @@ fn analyst(audit: &Audit) -> Vec<Sheet> {
             }
         }
         for target in &choice.targets {
-            let writes =
-                target_writes(&audit.appraisal, &audit.outcomes, &audit.layout, c, target, true);
+            let writes = target_writes(&audit.appraisal, &audit.outcomes, &audit.layout, c, target, true);
             for (i, write) in writes.into_iter().enumerate() {
                 let Cell { row, col } = nth(target.at.range, i);
                 match write {
@@ -259,11 +284,8 @@ fn the_second_route_agrees_with_the_library_on_every_kind_of_basis() {
             .count();
         // Two rates of return, two paybacks, the baseline's ratio, and rates of years without one.
         let averaged = case.timing.flows == Position::Averaged;
-        let rates: usize = audit
-            .outcomes
-            .iter()
-            .map(|o| o.offsets.iter().filter(|&&t| averaged || t < 1.0).count())
-            .sum();
+        let rates: usize =
+            audit.outcomes.iter().map(|o| o.offsets.iter().filter(|&&t| averaged || t < 1.0).count()).sum();
         assert_eq!(unchecked, 5 + rates, "{}", case.basis);
     }
 }
@@ -289,7 +311,10 @@ fn libreoffice_computes_what_the_cells_hold() {
                         };
                         // Differences near 0 are rounding; all else agrees to 1e-9.
                         let small = text.contains("ABS(") && x.abs() < 1e-3 && y.abs() < 1e-3;
-                        assert!(small || (x - y).abs() <= 1e-9 * x.abs().max(1e-3), "{place} is {y}, not {x}");
+                        assert!(
+                            small || (x - y).abs() <= 1e-9 * x.abs().max(1e-3),
+                            "{place} is {y}, not {x}"
+                        );
                     }
                     (Cached::Text(x), Data::String(y)) => assert_eq!(x, y, "{place}"),
                     (Cached::Text(_), other) => panic!("{place} is {other:?}"),
@@ -339,7 +364,10 @@ fn the_verdict_turns_when_a_cell_is_changed() {
         let verdict = verdict_of(&audit, values);
         assert!(verdict.starts_with("differs: "), "{what}: {verdict}");
     }
-    assert!(verdict_of(&audit, &results[1]).ends_with("first at 'It''s a liner'!H5"), "the factor's cell is named");
+    assert!(
+        verdict_of(&audit, &results[1]).ends_with("first at 'It''s a liner'!H5"),
+        "the factor's cell is named"
+    );
 }
 
 #[test]
@@ -359,11 +387,39 @@ fn a_cell_that_was_left_and_differs_gives_the_verdict() {
 
 #[test]
 fn a_table_is_said_not_to_be_checked() {
-    let text = "id = \"house\"\ntitle = \"House table\"\nbody = \"The house\"\nyear = 2026\n";
-    let _ = text;
     let case = case("3.5%", END, Labels::Years, Direction::Across, true);
-    let audit = audit(&case);
-    assert!(audit.cells.len() > 100);
+    let a = appraisal(&case);
+    let mut o = outcomes(&case, &a);
+    let table: Vec<(f64, f64)> = (0..=200).map(|t| (f64::from(t), 1.035_f64.powi(-t))).collect();
+    let rows: Vec<String> = table.iter().map(|(t, d)| format!("[{t:.1}, {d:?}]")).collect();
+    let text = format!(
+        "id = \"house\"\ntitle = \"House table\"\nbody = \"The house\"\nyear = 2026\nplace = \"page 1\"\n\
+         address = \"https://example.org/\"\nstatus = \"current\"\ncomplete = true\nchecked = \"made up\"\n\
+         prices = \"real\"\ntable = [{}]\n",
+        rows.join(", ")
+    );
+    let catalogue = Catalogue::builtin().with(&[("house.toml".into(), text)]).unwrap();
+    let basis = Basis::parse("house", &catalogue).unwrap();
+    for outcome in &mut o {
+        outcome.curve = basis.curve(&Where::default()).unwrap();
+        outcome.basis = basis.clone();
+    }
+    let audit = audit_of(a, o, &[]);
+    assert_eq!(audit.composed.built.verdict, VERDICT_AGREES);
+    let text = "Not independently checked: a basis of this kind has no second route here.";
+    let said = |c: &Content| matches!(c, Content::Text(t) if t == text);
+    assert!(audit.composed.sheets[3].cells().any(|(_, c)| said(c)));
+}
+
+#[test]
+fn a_wrong_factor_is_found_by_the_second_route() {
+    let case = case("3.5% to 30, 3% after", MIDDLE, Labels::Years, Direction::Across, true);
+    let a = appraisal(&case);
+    let mut o = outcomes(&case, &a);
+    // As if the library had let the edge year belong to the later band: year 31 at one rate.
+    o[1].factors[40] *= 1.0 + 1e-8;
+    let audit = audit_of(a, o, &[]);
+    assert!(audit.composed.built.verdict.starts_with("differs: "), "{}", audit.composed.built.verdict);
 }
 
 #[test]
@@ -379,7 +435,8 @@ fn notes_of_a_person_are_put_back_outside_of_what_is_marked_as_own() {
     let summary = &audit.composed.sheets[1];
     assert_eq!(summary.content(Cell { row: 500, col: 0 }), Some(&Content::Text("seen, JB".into())));
     assert_eq!(summary.content(Cell { row: 501, col: 0 }), Some(&Content::Text("in the way".into())));
-    let own = audit.composed.built.names.iter().find(|n| n.scope.as_deref() == Some("Audit summary")).unwrap();
+    let own =
+        audit.composed.built.names.iter().find(|n| n.scope.as_deref() == Some("Audit summary")).unwrap();
     assert_eq!(own.name, OWN);
     assert!(own.hidden);
     assert!(!own.text.contains("501"), "{}", own.text);
@@ -396,4 +453,33 @@ fn the_verdict_cell_is_named() {
     assert_eq!(name.text, "'Audit summary'!$B$3");
     assert_eq!(name.scope, None);
     assert_eq!(audit.composed.built.charts.len(), 3);
+}
+#[test]
+fn the_sheets_can_be_grafted_and_a_second_time_gives_the_same_bytes() {
+    let case = case("3.5% to 30, 3% after", END, Labels::Years, Direction::Across, true);
+    let audit = audit(&case);
+    let built = &audit.composed.built;
+    let put_in = |host: &Package, previous: &[String]| {
+        let ours = Package::from_bytes("own.xlsx", package(&audit.composed.sheets).unwrap()).unwrap();
+        let (set_names, charts) = (&built.names, &built.charts);
+        // The verdict's name goes with the sheets that leave, so that all come back in one order.
+        let verdict = [OldName { name: VERDICT.into(), scope: None }];
+        let remove_names = if previous.is_empty() { &verdict[..0] } else { &verdict[..] };
+        let graft = Graft { ours: &ours, previous, set_names, remove_names, charts };
+        host.write(&hence_workbook::graft::graft(host, &graft).unwrap().changes).unwrap()
+    };
+    let host = Package::from_bytes("mine.xlsx", package(&analyst(&audit)).unwrap()).unwrap();
+    let once = put_in(&host, &[]);
+    let again = Package::from_bytes("mine.xlsx", once.clone()).unwrap();
+    let own: Vec<String> = audit.composed.sheets.iter().map(|s| s.name.clone()).collect();
+    let twice = Package::from_bytes("mine.xlsx", put_in(&again, &own)).unwrap();
+    assert!(again.parts().eq(twice.parts()), "the same parts in the same order");
+    for part in again.parts() {
+        let (a, b) = (again.part(part).unwrap().unwrap(), twice.part(part).unwrap().unwrap());
+        assert!(a == b, "{part} differs");
+    }
+    assert!(again.bytes() == twice.bytes(), "the packages differ though their parts do not");
+    let book = String::from_utf8(again.part("xl/workbook.xml").unwrap().unwrap()).unwrap();
+    assert_eq!(book.matches("name=\"hence_own\"").count(), 6);
+    assert!(book.contains("name=\"hence_verdict\""));
 }

@@ -25,6 +25,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> (Sheet, Vec<Char
     let options = input.appraisal.choices.len() as u32;
     sheet.columns(0, 0, 22.0);
     sheet.columns(1, options.max(7), 16.0);
+    sheet.upright();
     sheet.text(0, 0, Style::Title, "Audit charts");
     sheet.text(1, 0, Style::Text, "The numbers behind each chart stand below.");
     let mut finishes = Vec::new();
@@ -51,7 +52,8 @@ fn finish(title: &str, x: &str, y: &str, x_format: &str, y_format: &str) -> Char
 fn factor_curve(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, finishes: &mut Vec<ChartFinish>) {
     let title = "Discount factor by year";
     let series = layout.blocks.iter().map(|block| {
-        let names: Vec<&str> = block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
+        let names: Vec<&str> =
+            block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
         let basis = input.outcomes[block.choice].basis.canonical();
         let name = if layout.blocks.len() == 1 { basis } else { format!("{}: {basis}", names.join(", ")) };
         Series { name, x: layout.offsets(block.choice), y: layout.factors(block.choice) }
@@ -123,8 +125,11 @@ fn table_chart(
 
 fn flat_rates(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes: &mut Vec<ChartFinish>) {
     let over = input.outcomes.iter().any(|o| o.increment.is_some());
-    let title =
-        if over { "Net present value over the baseline, by flat rate" } else { "Net present value by flat rate" };
+    let title = if over {
+        "Net present value over the baseline, by flat rate"
+    } else {
+        "Net present value by flat rate"
+    };
     sheet.text(*row, 0, Style::Section, title);
     let top = *row + 2;
     sheet.text(top - 1, 0, Style::Heading, "Flat rate");
@@ -133,7 +138,9 @@ fn flat_rates(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes
         (0..input.outcomes.len()).map(|c| rates.iter().map(|&r| npv_at(input, c, r)).collect()).collect();
     if let Some(base) = input.appraisal.baseline {
         let baseline = table[base].clone();
-        for (c, column) in table.iter_mut().enumerate().filter(|(c, _)| input.outcomes[*c].increment.is_some()) {
+        for (c, column) in
+            table.iter_mut().enumerate().filter(|(c, _)| input.outcomes[*c].increment.is_some())
+        {
             for (value, less) in column.iter_mut().zip(&baseline) {
                 *value = if c == base { value.map(|_| 0.0) } else { value.zip(*less).map(|(a, b)| a - b) };
             }

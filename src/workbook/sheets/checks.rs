@@ -58,8 +58,14 @@ struct Maker<'a> {
 /// Makes the sheet.
 pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
     let rebuilt = (0..layout.blocks.len()).map(|k| Rebuilt::new(input, layout, k)).collect();
-    let mut make =
-        Maker { input, layout, rebuilt, sections: Vec::new(), targets: Vec::new(), home: &layout.names.checks };
+    let mut make = Maker {
+        input,
+        layout,
+        rebuilt,
+        sections: Vec::new(),
+        targets: Vec::new(),
+        home: &layout.names.checks,
+    };
     make.plan();
     let mut sheet = Sheet::new(&layout.names.checks);
     head(&mut sheet, input);
@@ -160,7 +166,12 @@ impl<'a> Maker<'a> {
         let outcome = &self.input.outcomes[c];
         let at = self.sections[c];
         let basis = outcome.basis.canonical();
-        sheet.text(at.top, 0, Style::Section, format!("{} ({basis}, base {})", choice.name, outcome.base_words));
+        sheet.text(
+            at.top,
+            0,
+            Style::Section,
+            format!("{} ({basis}, base {})", choice.name, outcome.base_words),
+        );
         for (s, stream) in choice.streams.iter().enumerate() {
             let heading = format!("{} ({})", stream.name, side_words(stream.kind));
             sheet.text(at.top, col::FLOWS + s as u32, Style::Heading, heading);
@@ -191,9 +202,10 @@ impl<'a> Maker<'a> {
         let row = self.sections[c].years + i as u32;
         let (value, style) = match label_value(label, self.input.appraisal.date1904) {
             LabelValue::Number(x, true) => (Cached::Number(x), Style::Date),
-            LabelValue::Number(x, false) => {
-                (Cached::Number(x), if matches!(label, Label::Offset(_)) { Style::Offset } else { Style::Year })
-            }
+            LabelValue::Number(x, false) => (
+                Cached::Number(x),
+                if matches!(label, Label::Offset(_)) { Style::Offset } else { Style::Year },
+            ),
             LabelValue::Text(text) => (Cached::Text(text), Style::Text),
         };
         let source = refer_cell(self.home, &axis.at.sheet, nth(axis.at.range, i));
@@ -315,7 +327,8 @@ impl<'a> Maker<'a> {
         let live = |text: String, value: Option<f64>| value.map(|v| Live::number(text, v));
         let totals = &outcome.absolute;
         let sums = rows.absolute;
-        let (costs, benefits) = (absolute_cell(at.sums, col::REBUILT), absolute_cell(at.sums + 1, col::REBUILT));
+        let (costs, benefits) =
+            (absolute_cell(at.sums, col::REBUILT), absolute_cell(at.sums + 1, col::REBUILT));
         let allowed = tolerance(gross);
         let text = self.sum_formula(c, true);
         add(at.sums, sums.costs, "PV: costs", totals.pv_costs, allowed, live(text, value(0)));
@@ -406,7 +419,8 @@ impl<'a> Maker<'a> {
     /// The text that was written where a measure has no number.
     fn text_of(&self, c: usize, cell: &TargetCell) -> Cached {
         let target = &self.input.appraisal.choices[c].targets[cell.target];
-        let all = crate::formulas::expected(self.input.appraisal, self.input.outcomes, self.layout, c, target);
+        let all =
+            crate::formulas::expected(self.input.appraisal, self.input.outcomes, self.layout, c, target);
         all.into_iter().nth(cell.index).unwrap_or(Cached::None)
     }
 

@@ -31,20 +31,13 @@ pub(super) fn sheet(input: &AuditInput<'_>) -> Coverage {
                  Totals are undiscounted; the one in the workbook now is a live sum. Rows that are valued count \
                  for the verdict.";
     sheet.paragraph(1, 0, 7, Style::Wrapped, words);
-    let headings = [
-        "Cells",
-        "Heading",
-        "Role",
-        "Total recorded",
-        "Total now",
-        "Difference",
-        "Allowed",
-        "Result",
-    ];
+    let headings =
+        ["Cells", "Heading", "Role", "Total recorded", "Total now", "Difference", "Allowed", "Result"];
     for (i, heading) in headings.iter().enumerate() {
         sheet.text(HEADING, i as u32, Style::Heading, heading);
     }
-    let (valued, other): (Vec<_>, Vec<_>) = input.appraisal.coverage.iter().partition(|c| !c.roles.is_empty());
+    let (valued, other): (Vec<_>, Vec<_>) =
+        input.appraisal.coverage.iter().partition(|c| !c.roles.is_empty());
     let first = HEADING + 1;
     for (i, row) in valued.iter().chain(&other).enumerate() {
         let at = first + i as u32;
@@ -66,7 +59,7 @@ pub(super) fn sheet(input: &AuditInput<'_>) -> Coverage {
             format!("IF(ISNUMBER({}),{within},\"{DIFFERS}\")", cell(5))
         };
         let result = if row.roles.is_empty() { "ties" } else { AGREES };
-        sheet.formula(at, 7, Style::Text, text, Cached::Text(result.into()));
+        sheet.formula(at, 7, Style::Result, text, Cached::Text(result.into()));
     }
     sheet.freeze(first, 1);
     sheet.repeat(HEADING, HEADING);

@@ -21,11 +21,11 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Sheet {
     }
     for (column, width) in [
         (Column::Option, 18.0),
-        (Column::Stream, 30.0),
+        (Column::Stream, 42.0),
         (Column::Side, 10.0),
         (Column::Undiscounted, 16.0),
         (Column::Tail, 16.0),
-        (Column::Value, 16.0),
+        (Column::Value, 20.0),
     ] {
         let col = layout.table + column as u32;
         sheet.columns(col, col, width);
@@ -46,7 +46,8 @@ fn block(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, k: usize) {
     let block = &layout.blocks[k];
     let choice = &input.appraisal.choices[block.choice];
     let outcome = &input.outcomes[block.choice];
-    let options: Vec<&str> = block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
+    let options: Vec<&str> =
+        block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
     let (first, last) = (block.column, block.column + 3);
     let canonical = format!("Basis: {} ({})", outcome.basis.canonical(), options.join(", "));
     sheet.paragraph(BASIS_ROW, first, last, Style::Strong, canonical);
@@ -118,13 +119,7 @@ fn streams(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, c: usize)
         sheet.text(row, at(Column::Stream), Style::Text, &stream.name);
         sheet.text(row, at(Column::Side), Style::Text, side_words(stream.kind));
         let sum = sum_expression(stream, &home);
-        sheet.formula(
-            row,
-            at(Column::Undiscounted),
-            Style::Money,
-            sum,
-            Cached::Number(result.undiscounted),
-        );
+        sheet.formula(row, at(Column::Undiscounted), Style::Money, sum, Cached::Number(result.undiscounted));
         if stream.tail.is_some() {
             sheet.number(row, at(Column::Tail), Style::Money, result.pv_tail);
         }
@@ -171,7 +166,14 @@ fn sums(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, c: usize) {
     {
         let base = &layout.rows[baseline].absolute;
         for (row, from, less, name, plain, discounted) in [
-            (over.costs, sums.costs, base.costs, "Costs over the baseline", increment.costs, increment.pv_costs),
+            (
+                over.costs,
+                sums.costs,
+                base.costs,
+                "Costs over the baseline",
+                increment.costs,
+                increment.pv_costs,
+            ),
             (
                 over.benefits,
                 sums.benefits,
@@ -216,12 +218,14 @@ fn measures(
     line(sheet, annual.row, "Annual equivalent");
     let text = format!("IF({annuity}>0,{}/{annuity},\"{NO_ANNUAL}\")", value(used.net));
     let result = outcome.totals().annual.map_or_else(|| Cached::Text(NO_ANNUAL.into()), Cached::Number);
-    sheet.formula(annual.row, annual.col, Style::Money, text, result);
+    let shown =
+        |result: &Cached, style| if matches!(result, Cached::Text(_)) { Style::Wrapped } else { style };
+    sheet.formula(annual.row, annual.col, shown(&result, Style::Money), text, result);
     line(sheet, ratio.row, "Benefit-cost ratio");
     let (costs, benefits, none) = (value(used.costs), value(used.benefits), no_ratio(outcome));
     let text = format!("IF({costs}>0,{benefits}/{costs},\"{none}\")");
     let result = outcome.totals().ratio.map_or_else(|| Cached::Text(none.into()), Cached::Number);
-    sheet.formula(ratio.row, ratio.col, Style::Ratio, text, result);
+    sheet.formula(ratio.row, ratio.col, shown(&result, Style::Ratio), text, result);
 }
 
 /// The sum of an option's costs, or of its benefits and net flows less damages.

@@ -98,7 +98,13 @@ impl Line {
     }
 
     /// A line about a cell.
-    pub fn cell(place: String, what: impl Into<String>, recorded: Live, now: Option<Live>, allowed: f64) -> Self {
+    pub fn cell(
+        place: String,
+        what: impl Into<String>,
+        recorded: Live,
+        now: Option<Live>,
+        allowed: f64,
+    ) -> Self {
         let what = Live { formula: String::new(), value: Cached::Text(what.into()) };
         Line {
             recorded,
@@ -153,7 +159,7 @@ impl Line {
         if !matches!(self.recorded.value, Cached::Number(_)) {
             let now = cell(col::NOW);
             let text = format!("IF(ISTEXT({now}),{})", quote(AGREES, DIFFERS));
-            sheet.formula(row, col::RESULT, Style::Text, text, result);
+            sheet.formula(row, col::RESULT, Style::Result, text, result);
             return;
         }
         let recorded = cell(col::RECORDED);
@@ -166,7 +172,9 @@ impl Line {
         }
         let terms: Vec<String> = terms
             .iter()
-            .map(|x| if self.relative { format!("ABS({x}/{recorded}-1)") } else { format!("ABS({x}-{recorded})") })
+            .map(|x| {
+                if self.relative { format!("ABS({x}/{recorded}-1)") } else { format!("ABS({x}-{recorded})") }
+            })
             .collect();
         let text = match terms.as_slice() {
             [] => "0".to_owned(),
@@ -177,7 +185,7 @@ impl Line {
         let difference = cell(col::DIFFERENCE);
         let within = format!("IF({difference}<={},{})", cell(col::ALLOWED), quote(AGREES, DIFFERS));
         let text = format!("IF(ISNUMBER({difference}),{within},\"{DIFFERS}\")");
-        sheet.formula(row, col::RESULT, Style::Text, text, result);
+        sheet.formula(row, col::RESULT, Style::Result, text, result);
     }
 }
 

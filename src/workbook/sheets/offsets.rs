@@ -48,7 +48,13 @@ fn anniversaries(base: NaiveDate, date: NaiveDate) -> f64 {
 
 /// The same as a formula over the cell `label_cell` (the analyst's label, pulled to this sheet) and the
 /// base cell; constants stand in where a cell cannot be computed with.
-pub(super) fn formula(label_cell: &str, label: &Label, choice: &Choice, timing: Timing, home: &str) -> String {
+pub(super) fn formula(
+    label_cell: &str,
+    label: &Label,
+    choice: &Choice,
+    timing: Timing,
+    home: &str,
+) -> String {
     let shift = position(timing.flows) - position(timing.base);
     let plus = if shift == 0.0 { String::new() } else { format!("+{}", constant(shift)) };
     let base_cell = choice.base.at.as_ref().map(|at| refer(home, at));

@@ -61,7 +61,7 @@ impl Rebuilt {
         let lowest = fold(f64::min, 0.0) - if averaged { 1.0 } else { 0.0 };
         let longest = block.choices.iter().map(|&c| input.outcomes[c].service_years).max().unwrap_or(0);
         let reach = fold(f64::max, 1.0).max(f64::from(longest));
-        let length = length_of(&outcome.curve.parts());
+        let length = length_of(outcome.curve.parts());
         let at = Where { base_year: base_year(&choice.base.value), length };
         let route = Route::of(outcome.basis.spec(), &at, lowest, reach);
         let factor = |route: &Route, t: f64| {
@@ -211,9 +211,11 @@ impl Rebuilt {
             Form::Rate { rule, preferences, x, .. } => {
                 let name = if *rule == Rule::Given { "rate stated" } else { "growth" };
                 given(1, name, *x);
-                given(2, "time preference and hazard", preferences.rho);
-                given(3, "elasticity", preferences.eta);
-                given(4, "standard deviation of growth", preferences.sd);
+                if *rule != Rule::Given {
+                    given(2, "time preference and hazard", preferences.rho);
+                    given(3, "elasticity", preferences.eta);
+                    given(4, "standard deviation of growth", preferences.sd);
+                }
                 let cell = |row| at(top + row, 1);
                 let text = rule.formula(&cell(1), &cell(2), &cell(3), &cell(4));
                 sheet.text(top + 5, 0, Style::Text, "rate used");
@@ -225,8 +227,10 @@ impl Rebuilt {
                 given(2, "standard deviation of the rate", *sd);
             }
             Form::Chain { rule, preferences, bands } => {
-                given(1, "time preference and hazard", preferences.rho);
-                given(2, "elasticity", preferences.eta);
+                if *rule != Rule::Given {
+                    given(1, "time preference and hazard", preferences.rho);
+                    given(2, "elasticity", preferences.eta);
+                }
                 let name = if *rule == Rule::Given { "Rate stated" } else { "Growth" };
                 headings(sheet, top + 3, &["After offset", name, "Rate"]);
                 for (i, &(lower, x)) in bands.iter().enumerate() {
@@ -274,7 +278,8 @@ impl Rebuilt {
                 }
                 let top = self.row(k) + 4;
                 let end = top + bands.len() as u32 - 1;
-                let text = format!("LOOKUP({}-1,{},{})", at(row, 0), span(top, 0, end, 0), span(top, 2, end, 2));
+                let text =
+                    format!("LOOKUP({}-1,{},{})", at(row, 0), span(top, 0, end, 0), span(top, 2, end, 2));
                 sheet.formula(row, rate, Style::Rate, text, Cached::Number(form.yearly(n as usize)));
                 let text = format!("{}/(1+{})", at(row - 1, factor), at(row, rate));
                 sheet.formula(row, factor, Style::Factor, text, Cached::Number(route.chain(k)[n as usize]));

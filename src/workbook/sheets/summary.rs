@@ -35,7 +35,12 @@ pub(super) struct Summary {
 }
 
 /// Makes the sheet.
-pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout, checks: &Checks, coverage: &Coverage) -> Summary {
+pub(super) fn sheet(
+    input: &AuditInput<'_>,
+    layout: &Layout,
+    checks: &Checks,
+    coverage: &Coverage,
+) -> Summary {
     let mut sheet = Sheet::new(&input.names.summary);
     let options = input.appraisal.choices.len() as u32;
     sheet.columns(0, 0, 38.0);
@@ -43,7 +48,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout, checks: &Checks, co
     sheet.text(0, 0, Style::Title, "Audit summary");
     let verdict = verdict(&mut sheet, input, checks, coverage);
     let mut page = Page { sheet, row: COUNT_DIFFERS + 2 };
-    page.from_what(input);
+    page.provenance(input);
     page.basis(input, layout);
     page.results(input, layout);
     page.checks(input, checks, coverage);
@@ -123,7 +128,7 @@ impl Page {
         self.row += 1;
     }
 
-    fn from_what(&mut self, input: &AuditInput<'_>) {
+    fn provenance(&mut self, input: &AuditInput<'_>) {
         let meta = input.meta;
         self.section("What, from what");
         self.pair("Workbook", &meta.input_name);
@@ -186,7 +191,8 @@ impl Page {
         }
         if let Some(baseline) = input.appraisal.baseline {
             let name = &input.appraisal.choices[baseline].name;
-            let text = format!("{name}; ratio, annual equivalent, rates of return and payback use increments");
+            let text =
+                format!("{name}; ratio, annual equivalent, rates of return and payback use increments");
             self.pair("Baseline", &text);
         }
         self.row += 1;
@@ -314,11 +320,7 @@ impl Page {
         let rest = checks.count.saturating_sub(factors + cells);
         for (label, number, allowed) in [
             ("Factors: second route, Discounting, filled cells", factors, "1e-9 relative"),
-            (
-                "Present values and totals on Discounting",
-                rest,
-                "1e-9 of the gross present value",
-            ),
+            ("Present values and totals on Discounting", rest, "1e-9 of the gross present value"),
             ("Other filled or compared cells", cells, "half of the last displayed unit, or 1e-9"),
             ("Undiscounted totals of valued rows", coverage.valued, "1e-9 relative, or 0.000001"),
         ] {
