@@ -268,11 +268,12 @@ impl Sheet {
     }
 }
 
-/// Writes the sheets as a package of their own.
+/// Writes the sheets as a package of their own, with names for the whole workbook: (name, what it
+/// refers to).
 ///
 /// # Errors
 /// A number that is not finite, a formula that is too long, or a name the format does not allow.
-pub fn package(sheets: &[Sheet]) -> Result<Vec<u8>> {
+pub fn package(sheets: &[Sheet], names: &[(&str, &str)]) -> Result<Vec<u8>> {
     for sheet in sheets {
         check(sheet)?;
     }
@@ -282,6 +283,9 @@ pub fn package(sheets: &[Sheet]) -> Result<Vec<u8>> {
     let mut written = Ok(());
     for sheet in sheets {
         written = written.and_then(|()| write_sheet(&book, sheet));
+    }
+    for (name, text) in names {
+        written = written.and_then(|()| book.define_name(name, &format!("={text}")));
     }
     // Closed even after a failure: a drop would write the file all the same.
     let closed = book.close();
@@ -453,7 +457,7 @@ mod tests {
     fn a_number_that_is_not_finite_is_refused_by_cell() {
         let mut sheet = Sheet::new("S");
         sheet.number(1, 2, Style::Money, f64::NAN);
-        let error = package(&[sheet]).unwrap_err();
+        let error = package(&[sheet], &[]).unwrap_err();
         assert_eq!(error.to_string(), "S!C2: the number is NaN (own-sheet)");
     }
 
@@ -470,7 +474,7 @@ mod tests {
         let mut sheet = Sheet::new("It's");
         sheet.text(0, 0, Style::Title, "_x0041_");
         sheet.formula(1, 0, Style::Money, "1+1", Cached::Number(2.0));
-        let bytes = package(&[sheet]).unwrap();
+        let bytes = package(&[sheet], &[]).unwrap();
         assert_eq!(&bytes[..2], b"PK");
     }
 }

@@ -11,7 +11,6 @@ use hence_workbook::appraisal::{Appraisal, Direction, Held, TargetRole};
 use hence_workbook::formulas::{nth, target_writes};
 use hence_workbook::graft::Graft;
 use hence_workbook::layout::{LabelValue, Layout, label_value};
-use hence_workbook::names_edit::OldName;
 use hence_workbook::outcome::ChoiceOutcome;
 use hence_workbook::package::Package;
 use hence_workbook::patch::{Cached, CellWrite};
@@ -236,7 +235,7 @@ fn recalculated(books: &[Vec<Sheet>]) -> Option<Vec<BTreeMap<(String, Cell), Dat
     command.args(["--headless", "--convert-to", "xlsx", "--outdir"]).arg(&to);
     for (i, sheets) in books.iter().enumerate() {
         let path = from.join(format!("book{i}.xlsx"));
-        std::fs::write(&path, package(&unevaluated(sheets)).unwrap()).unwrap();
+        std::fs::write(&path, package(&unevaluated(sheets), &[]).unwrap()).unwrap();
         command.arg(path);
     }
     match command.output() {
@@ -449,9 +448,7 @@ fn notes_of_a_person_are_put_back_outside_of_what_is_marked_as_own() {
 #[test]
 fn the_verdict_cell_is_named() {
     let audit = audit(&case("3.5%", END, Labels::Years, Direction::Across, true));
-    let name = audit.composed.built.names.iter().find(|n| n.name == VERDICT).unwrap();
-    assert_eq!(name.text, "'Audit summary'!$B$3");
-    assert_eq!(name.scope, None);
+    assert_eq!(audit.composed.verdict_at, "'Audit summary'!$B$3");
     assert_eq!(audit.composed.built.charts.len(), 3);
 }
 #[test]
@@ -459,16 +456,14 @@ fn the_sheets_can_be_grafted_and_a_second_time_gives_the_same_bytes() {
     let case = case("3.5% to 30, 3% after", END, Labels::Years, Direction::Across, true);
     let audit = audit(&case);
     let built = &audit.composed.built;
+    let names = [(VERDICT, audit.composed.verdict_at.as_str())];
     let put_in = |host: &Package, previous: &[String]| {
-        let ours = Package::from_bytes("own.xlsx", package(&audit.composed.sheets).unwrap()).unwrap();
+        let ours = Package::from_bytes("own.xlsx", package(&audit.composed.sheets, &names).unwrap()).unwrap();
         let (set_names, charts) = (&built.names, &built.charts);
-        // The verdict's name goes with the sheets that leave, so that all come back in one order.
-        let verdict = [OldName { name: VERDICT.into(), scope: None }];
-        let remove_names = if previous.is_empty() { &verdict[..0] } else { &verdict[..] };
-        let graft = Graft { ours: &ours, previous, set_names, remove_names, charts };
+        let graft = Graft { ours: &ours, previous, set_names, remove_names: &[], charts };
         host.write(&hence_workbook::graft::graft(host, &graft).unwrap().changes).unwrap()
     };
-    let host = Package::from_bytes("mine.xlsx", package(&analyst(&audit)).unwrap()).unwrap();
+    let host = Package::from_bytes("mine.xlsx", package(&analyst(&audit), &[]).unwrap()).unwrap();
     let once = put_in(&host, &[]);
     let again = Package::from_bytes("mine.xlsx", once.clone()).unwrap();
     let own: Vec<String> = audit.composed.sheets.iter().map(|s| s.name.clone()).collect();
