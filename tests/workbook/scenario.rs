@@ -3,7 +3,7 @@
 //! Figures are made up for the test. Outcomes are worked out here from the curve's factors alone.
 
 use chrono::NaiveDate;
-use hence_core::{Basis, Catalogue, Payback, Position, Tail, Timing, Where};
+use hence_core::{Basis, Catalogue, Payback, Position, Tail, Timing, Where, internal_rates};
 use hence_workbook::appraisal::*;
 use hence_workbook::outcome::*;
 use hence_workbook::references::{Cell, Range, SheetRange};
@@ -220,7 +220,10 @@ pub fn outcomes(case: &Case, appraisal: &Appraisal) -> Vec<ChoiceOutcome> {
             annual: Some(npv / n),
         });
     }
-    all[1].irr = vec![0.0525];
+    // Rates of return of the increment over the baseline.
+    let flows: Vec<f64> = all[1].net.iter().zip(&all[0].net).map(|(a, b)| a - b).collect();
+    all[1].irr = internal_rates(&all[1].offsets, &flows, (-0.5, 1.0)).unwrap().rates;
+    assert_eq!(all[1].irr.len(), 1);
     all
 }
 

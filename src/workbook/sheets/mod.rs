@@ -11,6 +11,7 @@ mod own;
 mod rebuild;
 mod second_route;
 mod summary;
+mod targets;
 
 use hence_core::CAUTION;
 
