@@ -74,7 +74,7 @@ impl Basis {
                     [rest @ .., last] => error.with_hint(format!("{} or {last}", rest.join(", "))),
                 })
             }
-            Err(error) => Err(error),
+            Err(error) => Err(without_semicolon(head, catalogue).unwrap_or(error)),
         }
     }
 
@@ -179,6 +179,15 @@ impl Basis {
         }
         warnings
     }
+}
+
+/// The error for an id whose timing follows without the semicolon.
+fn without_semicolon(head: &str, catalogue: &Catalogue) -> Option<Error> {
+    let (id, rest) = head.trim().split_once(|c: char| c.is_whitespace() || c == ',')?;
+    let schedule = catalogue.get(id)?;
+    let at = head.chars().take_while(|c| c.is_whitespace()).count() + id.chars().count();
+    let error = Error::new(ErrorKind::Syntax, "basis", "expected `;` or the end after the id of a schedule");
+    Some(error.with_at(at).with_hint(format!("`{}; {}`", schedule.id(), rest.trim())))
 }
 
 /// The hyphens that spreadsheets put in place of the plain one.

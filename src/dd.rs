@@ -189,6 +189,28 @@ const SERIES: [f64; 6] = {
     series
 };
 
+/// 1 / n!, the coefficients of e^x - 1, n from 1 to 13.
+static INVERSE_FACTORIALS: [Dd; 13] = {
+    let mut inverses = [Dd::ONE; 13];
+    let mut n = 1;
+    while n < 13 {
+        inverses[n] = inverses[n - 1].over(Dd::of((n + 1) as f64));
+        n += 1;
+    }
+    inverses
+};
+
+/// 1 / (2n + 1), the coefficients of atanh(z) / z in z^2, n from 0 to 8.
+static INVERSE_ODDS: [Dd; 9] = {
+    let mut inverses = [Dd::ONE; 9];
+    let mut n = 1;
+    while n < 9 {
+        inverses[n] = Dd::ONE.over(Dd::of((2 * n + 1) as f64));
+        n += 1;
+    }
+    inverses
+};
+
 /// Adding this rounds a number below 2^51 to a whole one, which then stands in the low bits.
 const ROUNDER: f64 = 6_755_399_441_055_744.0;
 
@@ -222,12 +244,8 @@ pub(crate) fn exp2_m1(y: Dd) -> Dd {
     }
     let (k, rest) = whole_64ths(y.hi);
     let x = two_sum(rest, y.lo) * Dd::LN2;
-    // e^x - 1 by its series; |x| < 0.0055 leaves a remainder below 2^-110 of it.
-    let mut sum = Dd::ONE;
-    for n in (2..=13).rev() {
-        sum = Dd::ONE + x * sum / Dd::of(f64::from(n));
-    }
-    let p = x * sum;
+    // |x| < 0.0055 leaves a remainder below 2^-110 of the sum.
+    let p = INVERSE_FACTORIALS.iter().rev().fold(Dd::ZERO, |sum, &c| (sum + c) * x);
     if k == 0 {
         return p;
     }
@@ -240,10 +258,7 @@ fn log2_near_one(u: Dd) -> Dd {
     // 2 atanh(u / (2 + u)), whose series has only odd powers.
     let z = u / (Dd::of(2.0) + u);
     let square = z * z;
-    let mut sum = Dd::ZERO;
-    for n in (0..=8).rev() {
-        sum = sum * square + Dd::ONE / Dd::of(f64::from(2 * n + 1));
-    }
+    let sum = INVERSE_ODDS.iter().rev().fold(Dd::ZERO, |sum, &c| sum * square + c);
     z * sum * Dd::LOG2_E * 2.0
 }
 

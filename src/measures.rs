@@ -35,13 +35,24 @@ pub fn undiscounted_total(flows: &[f64]) -> Result<f64> {
 /// order of the flows does not matter.
 ///
 /// **Errors**: `Shape` where lengths differ; `NotFinite`, with the index; `OutsideDomain` from the curve.
+///
+/// ```
+/// use hence_core::{Compounding, Spec, Where, present_value};
+/// let curve = Spec::Flat { rate: 1.0, compounding: Compounding::Yearly }.curve(&Where::default()).unwrap();
+/// assert_eq!(present_value(&curve, &[1.0, 2.0, 3.0], &[8.0, 8.0, 8.0]).unwrap(), 7.0);
+/// // 1,000,000 due in 140 years at 10%: 1.603 with yearly compounding.
+/// let curve = Spec::Flat { rate: 0.1, compounding: Compounding::Yearly }.curve(&Where::default()).unwrap();
+/// assert!((present_value(&curve, &[140.0], &[1e6]).unwrap() - 1.603).abs() < 5e-4);
+/// let error = present_value(&curve, &[1.0, 2.0], &[8.0, f64::NAN]).unwrap_err();
+/// assert_eq!(error.to_string(), "flows[1]: found NaN, allowed: finite numbers (not-finite)");
+/// ```
 pub fn present_value(curve: &Curve, offsets: &[f64], flows: &[f64]) -> Result<f64> {
     check::same_length(("offsets", offsets), ("flows", flows))?;
     check::finite_all("offsets", offsets)?;
     check::finite_all("flows", flows)?;
     let mut factors = vec![0.0; offsets.len()];
     curve.factors(offsets, &mut factors)?;
-    check::result("flows", dot(&factors, flows)?)
+    check::result("flows", dot(&factors, flows))
 }
 
 /// The present value of each flow.
@@ -93,7 +104,7 @@ pub fn net_present_value(factors: &[f64], benefits: &[f64], costs: &[f64]) -> Re
     check::finite_all("factors", factors)?;
     let twice = [factors, factors].concat();
     let flows: Vec<f64> = benefits.iter().copied().chain(costs.iter().map(|cost| -cost)).collect();
-    check::result("benefits", dot(&twice, &flows)?)
+    check::result("benefits", dot(&twice, &flows))
 }
 
 /// The benefit-cost ratio.
@@ -177,6 +188,13 @@ fn ratio(above: (&'static str, f64), below: (&'static str, f64)) -> Result<f64> 
 ///
 /// **Source**: for one rate, the capital recovery factor r/(1 - (1+r)^-N); E. L. Grant, Principles of Engineering
 /// Economy, 1930.
+///
+/// ```
+/// use hence_core::{Compounding, Spec, Where, annual_equivalent};
+/// let curve = Spec::Flat { rate: 1.0, compounding: Compounding::Yearly }.curve(&Where::default()).unwrap();
+/// assert_eq!(annual_equivalent(&curve, 7.0, 3).unwrap(), (8.0, 0.875));
+/// assert_eq!(annual_equivalent(&curve, 7.0, 0).unwrap_err().code(), "no-meaning");
+/// ```
 pub fn annual_equivalent(curve: &Curve, npv: f64, service_years: u32) -> Result<(f64, f64)> {
     check::finite("npv", npv)?;
     if !(1..=100_000).contains(&service_years) {
@@ -292,7 +310,7 @@ fn cumulate(offsets: &[f64], values: &[f64]) -> Result<Vec<(f64, f64)>> {
 /// ```
 pub fn mean_time(offsets: &[f64], gross_pv: &[f64]) -> Result<f64> {
     let (weights, total) = gross(offsets, gross_pv)?;
-    check::result("gross_pv", dot(&weights, offsets)? / total)
+    check::result("gross_pv", dot(&weights, offsets) / total)
 }
 
 /// The absolute values and their sum, which is above 0.

@@ -308,10 +308,13 @@ fn checked_table(rows: &[(f64, f64)]) -> std::result::Result<Vec<(f64, f64)>, St
     if rows.first() != Some(&(0.0, 1.0)) {
         return Err("the first pair must be [0, 1]".into());
     }
+    if rows.len() < 2 {
+        return Err("there must be a second pair, up to which the table holds".into());
+    }
     for (i, pair) in rows.windows(2).enumerate() {
         let ((before, _), (offset, factor)) = (pair[0], pair[1]);
         // Written so that a value that is no number fails too.
-        let good = offset > before && offset.is_finite() && factor > 0.0 && factor.is_finite();
+        let good = offset > before && offset.is_finite() && factor >= f64::MIN_POSITIVE && factor.is_finite();
         if !good {
             return Err(format!(
                 "pair {} is [{}, {}]: offsets must increase, factors must be above 0",

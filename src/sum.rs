@@ -4,8 +4,6 @@
 //! every product of two doubles, so nothing is lost on the way and one rounding is left for the end. The idea of a
 //! long accumulator is U. Kulisch's ("Computer Arithmetic and Validity", 2nd edition, 2013, chapter 8).
 
-use crate::{Error, ErrorKind, Result};
-
 /// The weight of the register's lowest bit, 2^-2176: below the last bit of the smallest product, 2^-2148.
 const LOWEST: i64 = -2176;
 /// Limbs of 32 bits; the highest bit, 2^2207, leaves room for 2^159 products of the largest doubles.
@@ -196,21 +194,19 @@ pub fn sum(terms: &[f64]) -> f64 {
 ///
 /// **Accuracy**: the double nearest to the exact sum of the exact products; see [`ExactSum`].
 ///
-/// **Errors**: `Shape` where the lengths differ.
+/// # Panics
+///
+/// Where the lengths differ, as slices do: pairing what is left would give a sum of something else. Functions of this
+/// library that take such arrays from a user return a `Shape` error before they come here.
 ///
 /// ```
-/// assert_eq!(hence_core::dot(&[100.0, 100.0], &[1.0, 0.5])?, 150.0);
-/// assert!(hence_core::dot(&[100.0], &[1.0, 0.5]).is_err());
-/// # Ok::<(), hence_core::Error>(())
+/// assert_eq!(hence_core::dot(&[100.0, 100.0], &[1.0, 0.5]), 150.0);
 /// ```
-pub fn dot(a: &[f64], b: &[f64]) -> Result<f64> {
-    if a.len() != b.len() {
-        return Err(Error::new(ErrorKind::Shape, "b", format!("{} numbers beside {}", b.len(), a.len()))
-            .with_hint("arrays of the same length"));
-    }
+pub fn dot(a: &[f64], b: &[f64]) -> f64 {
+    assert_eq!(a.len(), b.len(), "a sum of products needs two arrays of the same length");
     let mut sum = ExactSum::new();
     for (&x, &y) in a.iter().zip(b) {
         sum.add_product(x, y);
     }
-    Ok(sum.total())
+    sum.total()
 }

@@ -95,6 +95,16 @@ impl Tail {
     /// **Source**: geometric series, as for the growing perpetuity F (1+x)/(r - x), M. J. Gordon, The Investment,
     /// Financing and Valuation of the Corporation, 1962; gamma curve, M. L. Weitzman, Gamma Discounting, American Economic
     /// Review 91, 2001.
+    ///
+    /// ```
+    /// use hence_core::{Compounding, Spec, Tail, Where};
+    /// let curve = Spec::Flat { rate: 0.04, compounding: Compounding::Yearly }.curve(&Where::default()).unwrap();
+    /// let value = |text: &str| Tail::parse(text).unwrap().present_value(&curve, 0.0, 100.0, None);
+    /// assert!((value("for ever").unwrap() - 2500.0).abs() < 1e-9);
+    /// assert!((value("growing 2%, for ever").unwrap() - 102.0 / 0.02).abs() < 1e-9);
+    /// assert_eq!(value("growing 5%, for ever").unwrap_err().to_string(), "tail: the flows grow by 5% a year for ever \
+    ///     and the curve's last rate is 4%, so their value has no end (diverges)");
+    /// ```
     pub fn present_value(
         &self,
         curve: &Curve,
@@ -163,7 +173,7 @@ impl Tail {
         let mut factors = vec![0.0; offsets.len()];
         curve.factors(&offsets, &mut factors)?;
         check::finite_all("tail", &growth)?;
-        check::result("tail", dot(&factors, &growth)?)
+        check::result("tail", dot(&factors, &growth))
     }
 
     /// The value of further flows without end, per unit of the last flow.

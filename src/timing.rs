@@ -117,7 +117,7 @@ impl Timing {
     ///
     /// **Accuracy**: exact for whole and half years.
     ///
-    /// **Errors**: `NotFinite` for a NaN or an infinity; `Unsupported` where the base is averaged.
+    /// **Errors**: `NotFinite` for a NaN or an infinity; `NoMeaning` where the base is averaged.
     ///
     /// ```
     /// use hence_core::{Position, TimedOffset, Timing};
@@ -138,7 +138,7 @@ impl Timing {
 
 fn averaged_base() -> Error {
     let message = "the base is one moment and cannot be averaged, allowed: start, middle, end";
-    Error::new(ErrorKind::Unsupported, "timing", message).with_hint("base middle")
+    Error::new(ErrorKind::NoMeaning, "timing", message).with_hint("base middle")
 }
 
 fn syntax(message: String) -> Error {

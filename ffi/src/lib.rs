@@ -1,1 +1,31 @@
-//! x
+//! The C interface of hence: handles, arrays, statuses. No arithmetic of its own.
+//!
+//! Every function returns a status ([`HENCE_OK`] is 0) and leaves its outputs untouched unless it
+//! succeeds. No function keeps a caller's pointer, prints, or changes a mode of the process.
+#![allow(clippy::missing_safety_doc)] // the contract is each function's documentation, which the header carries
+#![allow(non_camel_case_types)] // the names are those of the C interface
+
+mod arguments;
+mod basis;
+mod curves;
+mod error;
+mod evidence;
+mod status;
+
+pub use arguments::HENCE_LENGTH_MAX;
+pub use basis::{hence_basis, hence_basis_describe, hence_basis_free, hence_basis_parse};
+pub use curves::{hence_factors, hence_forward_rates, hence_mean_rates, hence_present_value};
+pub use error::hence_error;
+pub use evidence::hence_ramsey_rate;
+pub use status::*;
+
+/// The version of the binary interface: raised when a function, struct or constant changes its meaning.
+pub const HENCE_ABI_VERSION: u32 = 1;
+
+/// The version of the binary interface that this library was built with.
+///
+/// A program compares it with HENCE_ABI_VERSION of its header. Threads: any.
+#[unsafe(no_mangle)]
+pub extern "C" fn hence_abi_version() -> u32 {
+    HENCE_ABI_VERSION
+}

@@ -6,7 +6,7 @@ use super::edges::Edges;
 use super::gamma::Gamma;
 use super::horizon::{ByFlow, RatePath};
 use super::mixture::Mixture;
-use super::piecewise::Piecewise;
+use super::piecewise::{Flat, Piecewise};
 use super::ramsey::{Ramsey, slope};
 use super::{Curve, Domain, Form, Parts};
 use crate::dd::{Dd, exp2_m1};
@@ -129,12 +129,11 @@ impl Spec {
 type Built = (Form, Domain, Parts);
 
 fn flat(rate: Dd, compounding: Compounding) -> Built {
-    let lines = Piecewise::from_slopes(Edges::none(), vec![slope(rate, compounding)]);
     let parts = match compounding {
         Compounding::Yearly => Parts::Yearly { rate: rate.hi },
         Compounding::Continuous => Parts::Continuous { rate: rate.hi },
     };
-    (Form::Lines(lines), Domain::ALL, parts)
+    (Form::Flat(Flat::new(slope(rate, compounding))), Domain::ALL, parts)
 }
 
 fn forward(edges: Edges, rates: Vec<Dd>, compounding: Compounding) -> Built {

@@ -7,11 +7,6 @@ use crate::{Band, Edge, Error, ErrorKind, Result, Where};
 pub(super) struct Edges(Vec<f64>);
 
 impl Edges {
-    /// The edges of a single band without end.
-    pub(super) fn none() -> Edges {
-        Edges(vec![f64::INFINITY])
-    }
-
     /// Edges known to increase (the offsets of a table).
     pub(super) fn increasing(uppers: Vec<f64>) -> Edges {
         Edges(uppers)
@@ -67,7 +62,12 @@ impl Edges {
     /// The band that holds t; an edge belongs to the band it closes. Beyond the last edge: the last band.
     #[inline(always)]
     pub(super) fn band(&self, t: f64) -> usize {
-        self.0.partition_point(|&upper| upper < t).min(self.0.len() - 1)
+        // Counting a few edges is quicker than a search, whose branches cannot be foreseen for mixed offsets.
+        let before = match self.0.len() {
+            ..=16 => self.0.iter().map(|&upper| usize::from(upper < t)).sum(),
+            _ => self.0.partition_point(|&upper| upper < t),
+        };
+        before.min(self.0.len() - 1)
     }
 
     /// The band that begins at, or holds, the time just after 0.

@@ -48,7 +48,12 @@ impl Mixture {
             let product = two_prod(*weight, factor.hi);
             Dd { hi: product.hi, lo: product.lo + weight * factor.lo }
         });
-        weighted.fold(Dd::ZERO, |sum, term| sum + term) / self.total
+        self.shared(weighted.fold(Dd::ZERO, |sum, term| sum + term))
+    }
+
+    /// A weighted sum over the sum of the weights, which mostly is 1.
+    fn shared(&self, sum: Dd) -> Dd {
+        if self.total == Dd::ONE { sum } else { sum / self.total }
     }
 
     pub(super) fn log2(&self, t: f64) -> Dd {
@@ -75,7 +80,7 @@ impl Mixture {
 
     fn mean(&self, value: impl Fn(usize) -> Dd) -> Dd {
         let sum = (0..self.components.len()).fold(Dd::ZERO, |sum, k| sum + value(k) * self.components[k].0);
-        sum / self.total
+        self.shared(sum)
     }
 }
 

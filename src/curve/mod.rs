@@ -20,11 +20,12 @@ use crate::{Error, ErrorKind, Position, Result, Spec, Timing};
 use gamma::Gamma;
 use horizon::ByFlow;
 use mixture::Mixture;
-use piecewise::Piecewise;
+use piecewise::{Flat, Piecewise};
 
 /// How the logarithm of the factor is computed.
 #[derive(Clone, Debug, PartialEq)]
 enum Form {
+    Flat(Flat),
     Lines(Piecewise),
     ByFlow(ByFlow),
     Gamma(Gamma),
@@ -35,6 +36,7 @@ impl Form {
     /// log2 D(t) to about 100 bits; t lies in the domain.
     fn log2(&self, t: f64) -> Dd {
         match self {
+            Form::Flat(flat) => flat.log2(t),
             Form::Lines(lines) => lines.log2(t),
             Form::ByFlow(horizon) => horizon.log2(t),
             Form::Gamma(gamma) => gamma.log2(t),
@@ -53,6 +55,7 @@ impl Form {
     /// -D'(t)/D(t).
     fn instantaneous(&self, t: f64) -> Dd {
         match self {
+            Form::Flat(flat) => flat.instantaneous(),
             Form::Lines(lines) => lines.instantaneous(t),
             Form::ByFlow(horizon) => horizon.instantaneous(t),
             Form::Gamma(gamma) => gamma.instantaneous(t),
@@ -63,6 +66,7 @@ impl Form {
     /// -D'/D just after 0.
     fn initial(&self) -> Dd {
         match self {
+            Form::Flat(flat) => flat.instantaneous(),
             Form::Lines(lines) => lines.initial(),
             Form::ByFlow(horizon) => horizon.initial(),
             Form::Gamma(gamma) => gamma.instantaneous(0.0),
@@ -73,6 +77,7 @@ impl Form {
     /// Whether factors from offset 0 on cannot exceed 1, so that none overflows.
     fn bounded(&self) -> bool {
         match self {
+            Form::Flat(flat) => flat.falls(),
             Form::Lines(lines) => lines.falls(),
             Form::ByFlow(horizon) => horizon.bounded(),
             Form::Gamma(_) => true,
@@ -179,13 +184,11 @@ impl Curve {
                 self.factor(*t).map_err(|e| e.with_index(index))?;
             }
         }
+        // The kind of curve is settled outside the loops, which are then free of branches.
         match &self.form {
-            Form::Lines(lines) => lines.fill(offsets, factors),
-            form => {
-                for (factor, &t) in factors.iter_mut().zip(offsets) {
-                    *factor = form.factor(t).hi;
-                }
-            }
+            Form::Flat(flat) => fill(offsets, factors, |t| exp2(flat.log2(t))),
+            Form::Lines(lines) => fill(offsets, factors, |t| exp2(lines.log2(t))),
+            form => fill(offsets, factors, |t| form.factor(t)),
         }
         Ok(())
     }
@@ -304,6 +307,13 @@ impl Curve {
             Form::Mixture(mixture) => mixture.components().iter().all(|(_, curve)| curve.defined(t)),
             _ => true,
         }
+    }
+}
+
+#[inline(always)]
+fn fill(offsets: &[f64], factors: &mut [f64], factor: impl Fn(f64) -> Dd) {
+    for (result, &t) in factors.iter_mut().zip(offsets) {
+        *result = factor(t).hi;
     }
 }
 

@@ -1,9 +1,37 @@
-//! Curves whose logarithm is made of straight lines: flat, banded, Ramsey, tables.
+//! Curves whose logarithm is made of straight lines: one line (flat), or several (banded, Ramsey, tables).
 
 use super::edges::Edges;
-use crate::dd::{Dd, exp2, log2, two_diff, two_prod};
+use crate::dd::{Dd, log2, two_diff, two_prod};
 
-/// One line: log2 D(t) = value + slope (t - anchor).
+/// One line through 0 without end: log2 D(t) = slope t.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) struct Flat {
+    slope: Dd,
+}
+
+impl Flat {
+    pub(super) fn new(slope: Dd) -> Flat {
+        Flat { slope }
+    }
+
+    #[inline(always)]
+    pub(super) fn log2(&self, t: f64) -> Dd {
+        let product = two_prod(self.slope.hi, t);
+        Dd { hi: product.hi, lo: product.lo + self.slope.lo * t }
+    }
+
+    /// -D'/D, continuous.
+    pub(super) fn instantaneous(&self) -> Dd {
+        -(self.slope * Dd::LN2)
+    }
+
+    /// Whether the factor never rises.
+    pub(super) fn falls(&self) -> bool {
+        self.slope.hi <= 0.0
+    }
+}
+
+/// One line of several: log2 D(t) = value + slope (t - anchor).
 #[derive(Clone, Debug, PartialEq)]
 struct Line {
     anchor: f64,
@@ -78,22 +106,5 @@ impl Piecewise {
     /// Whether the factor never rises after 0.
     pub(super) fn falls(&self) -> bool {
         self.lines[self.edges.band_after_zero()..].iter().all(|line| line.slope.hi <= 0.0)
-    }
-
-    /// The factors of many offsets, all within the domain.
-    pub(super) fn fill(&self, offsets: &[f64], factors: &mut [f64]) {
-        match self.lines.as_slice() {
-            // One line: no search for the band, so that the loop stays free of branches.
-            [line] => {
-                for (factor, &t) in factors.iter_mut().zip(offsets) {
-                    *factor = exp2(line.log2(t)).hi;
-                }
-            }
-            _ => {
-                for (factor, &t) in factors.iter_mut().zip(offsets) {
-                    *factor = exp2(self.log2(t)).hi;
-                }
-            }
-        }
     }
 }

@@ -48,6 +48,21 @@ impl Positions {
 
 /// A parsed rate line: a curve, and the timing where the line states one.
 ///
+/// ```text
+/// 3.5%    3.5% continuous                                 a flat rate; 0.035 is read too
+/// 3.5% to 30, 3% to 75, 2% after                          forward rates by band; `; edges from 2026`
+/// 2.5% to 2070, 1.5% after                                an edge of 1000 or more is a calendar year
+/// 4% to 10, 3% after; whole horizon by flow               or `by length`; stepped
+/// 3.9% at 3, 4% at 10; whole horizon by length, interpolated
+/// preference 1%, hazard 0.5%, elasticity 1, growth 2%     `; exact` or `; continuous`
+/// preference 1%, elasticity 2, growth 2% to 50, 1% after
+/// preference 1%, elasticity 2, growth 2% sd 3.6%          or `log growth`, with `persistence 0.7`
+/// gamma mean 4% sd 3%
+/// 0.5 of (1%), 0.5 of (7% continuous)
+/// ```
+///
+/// After any of them: `; flows middle, base start` (start, middle, end; flows averaged).
+///
 /// `Display` prints the canonical line, which parses back to the same rate line: lower case, one space, `;`
 /// between the curve, what qualifies it, and the timing; each rate the shortest percentage of its double.
 ///
@@ -115,6 +130,7 @@ pub(crate) fn timing_clauses(positions: Positions) -> String {
 }
 
 /// An error on its way out, with the decimal comma that caused it.
+#[derive(Debug)]
 pub(crate) struct Fault {
     pub error: Error,
     comma: Option<usize>,

@@ -170,7 +170,7 @@ impl Parser {
             return self.points(first);
         }
         if self.is_word("to") || self.is_word("after") {
-            return Ok(Head::Bands(self.bands(first, Self::check_rate)?));
+            return Ok(Head::Bands(self.bands(first, false)?));
         }
         if self.finished() || self.is_sign(';') {
             return Ok(Head::Flat(first, Compounding::Yearly));
@@ -195,8 +195,8 @@ impl Parser {
         Ok(Some(Head::Flat(rate, compounding)))
     }
 
-    /// Bands, their first value read and its `to` or `after` next; `check` looks at each further value.
-    fn bands(&mut self, first: f64, check: fn(&Self, f64, usize) -> Parsed<()>) -> Parsed<Vec<Band>> {
+    /// Bands of rates or of growth, their first value read and its `to` or `after` next.
+    fn bands(&mut self, first: f64, growth: bool) -> Parsed<Vec<Band>> {
         let mut bands = Vec::new();
         let mut value = first;
         loop {
@@ -216,14 +216,16 @@ impl Parser {
                 return Err(self.error_at(ErrorKind::Edges, at, message).into());
             }
             bands.push(Band { value, to: Some(edge) });
-            // A comma goes on with the bands only where a number follows: after growth comes another word.
-            if !self.is_sign(',') || matches!(self.peek(1).kind, Kind::Word(_)) {
+            // After growth and a comma may come the next parameter instead of the next band.
+            if !self.is_sign(',') || (growth && matches!(self.peek(1).kind, Kind::Word(_))) {
                 return Ok(bands);
             }
             self.sign(',');
             let at = self.at();
             value = self.percent()?;
-            check(self, value, at)?;
+            if !growth {
+                self.check_rate(value, at)?;
+            }
             if self.finished() || self.is_sign(';') {
                 let error = self.unexpected("`to` with the edge of the band, or `after`", &[]);
                 return Err(error
@@ -315,7 +317,7 @@ impl Parser {
             return Ok(Growth::Uncertain { mean, sd, log, persistence });
         }
         if self.is_word("to") || self.is_word("after") {
-            return Ok(Growth::Path(self.bands(mean, |_, _, _| Ok(()))?));
+            return Ok(Growth::Path(self.bands(mean, true)?));
         }
         if self.finished() || self.is_sign(';') || self.is_sign(',') {
             return Ok(Growth::Path(vec![Band { value: mean, to: None }]));

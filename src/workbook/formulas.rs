@@ -219,6 +219,14 @@ pub fn expected(
     }
 }
 
+/// Whether a text in a target cell is one that a fill writes where a measure has no number.
+pub fn is_own_text(text: &str) -> bool {
+    [NO_IRR, NO_PAYBACK, NO_ANNUAL].contains(&text)
+        || ["no ratio: ", "several rates: see ", "several crossings: see "]
+            .iter()
+            .any(|own| text.starts_with(own))
+}
+
 /// The text where the ratio has no meaning.
 pub fn no_ratio(outcome: &ChoiceOutcome) -> &'static str {
     match outcome.increment {

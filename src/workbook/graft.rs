@@ -22,6 +22,16 @@ pub use chart::{ChartFinish, Legend, finish_chart};
 const WORKSHEET: &str = "http://schemas.openxmlformats.org/officeDocument/2006/relationships/worksheet";
 const STYLES: &str = "http://schemas.openxmlformats.org/officeDocument/2006/relationships/styles";
 const STYLES_TYPE: &str = "application/vnd.openxmlformats-officedocument.spreadsheetml.styles+xml";
+/// The styles of a workbook without a styles part, as spreadsheet programs suppose them.
+const PLAIN_STYLES: &str = "<?xml version=\"1.0\" encoding=\"UTF-8\" standalone=\"yes\"?>\n\
+    <styleSheet xmlns=\"http://schemas.openxmlformats.org/spreadsheetml/2006/main\">\
+    <fonts count=\"1\"><font><sz val=\"11\"/><name val=\"Calibri\"/><family val=\"2\"/></font></fonts>\
+    <fills count=\"2\"><fill><patternFill patternType=\"none\"/></fill>\
+    <fill><patternFill patternType=\"gray125\"/></fill></fills>\
+    <borders count=\"1\"><border><left/><right/><top/><bottom/><diagonal/></border></borders>\
+    <cellStyleXfs count=\"1\"><xf numFmtId=\"0\" fontId=\"0\" fillId=\"0\" borderId=\"0\"/></cellStyleXfs>\
+    <cellXfs count=\"1\"><xf numFmtId=\"0\" fontId=\"0\" fillId=\"0\" borderId=\"0\" xfId=\"0\"/></cellXfs>\
+    <cellStyles count=\"1\"><cellStyle name=\"Normal\" xfId=\"0\" builtinId=\"0\"/></cellStyles></styleSheet>";
 
 /// What is to be put into a workbook.
 #[derive(Clone, Copy)]
@@ -130,8 +140,9 @@ pub fn graft(host: &Package, graft: &Graft) -> Result<Grafted> {
     replace(host, &mut changes, host.workbook_part(), |xml| edit_workbook(xml, &edit))?;
     replace(host, &mut changes, &relationships_part(host.workbook_part()), |xml| links.written(xml))?;
 
-    let mut types = copier.types;
-    types.extend(new_styles.map(|name| (name, STYLES_TYPE.to_owned())));
+    // The styles come first, so that a second fill, which finds them there, gives the same order.
+    let styles_type = new_styles.map(|name| (name, STYLES_TYPE.to_owned()));
+    let types: Vec<_> = styles_type.into_iter().chain(copier.types).collect();
     let gone = changes.remove.iter().chain(&links.gone).chain(types.iter().map(|(name, _)| name));
     let gone: Vec<String> = gone.cloned().collect();
     let gone: Vec<&str> = gone.iter().map(String::as_str).collect();
@@ -274,11 +285,11 @@ fn styles(
     if let Some(dangling) = there {
         links.remove.push(dangling.id.clone());
     }
-    let map = StyleMap::identity(&own)?;
+    let (part, map) = merge_styles(PLAIN_STYLES.as_bytes(), &own)?;
     let names = (0..).map(|n| if n == 0 { "styles.xml".to_owned() } else { format!("styles{n}.xml") });
     let name = names.map(|name| format!("{}{name}", folder(host))).find(|name| !host.has(name));
     let name = name.unwrap_or_default();
     links.add(STYLES, &target(host, &name));
-    changes.add.push((name.clone(), own));
+    changes.add.push((name.clone(), part));
     Ok((map, Some(name)))
 }

@@ -4,21 +4,33 @@
 //! here is where they are read from, where they go, and the proof that comes with them.
 
 pub mod appraisal;
+pub mod check;
+pub mod model;
+pub mod fill;
 pub mod formulas;
 pub mod graft;
 pub mod layout;
-pub mod model;
 pub mod names_edit;
 pub mod outcome;
+mod own;
 pub mod package;
 pub mod patch;
+mod plan;
 pub mod preflight;
 pub mod problem;
+pub mod reading;
 pub mod references;
+pub mod report;
+pub mod resolve;
+pub mod roles;
+pub mod schedules;
 pub mod sheets;
 mod splice;
 pub mod stale;
 pub mod styles;
+pub mod suggest;
+pub mod tolerance;
+pub mod valuation;
 pub mod verify;
 pub mod writer;
 pub mod xml;

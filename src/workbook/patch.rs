@@ -59,7 +59,7 @@ impl CellWrite {
 ///
 /// **Returns** the new part; with no writes the same bytes.
 ///
-/// **Errors**, each with its cell: `not-finite` a number that no cell can hold; `text-characters`,
+/// **Errors**, each with its cell: `outside-sheet` beyond the last row or column; `not-finite` a number that no cell can hold; `text-characters`,
 /// `text-length` a text or formula that XML or spreadsheet programs cannot hold; `array-part` a
 /// cell of an array formula or data table; `merged-away` a cell hidden under a merged one;
 /// `duplicate-cell`, `misplaced-cell` a sheet that says two things about a cell; `no-formula` a

@@ -109,6 +109,9 @@ pub struct WorkbookError {
     problems: Vec<Problem>,
 }
 
+/// Codes of problems that are about files and places, not about what a workbook holds.
+const FILE_CODES: [&str; 4] = ["cannot-read", "cannot-write", "output-exists", "output-is-input"];
+
 /// The result of a fallible function of this crate.
 pub type Result<T> = std::result::Result<T, WorkbookError>;
 
@@ -116,6 +119,12 @@ impl WorkbookError {
     /// Everything that was found, errors and warnings, in sheet order.
     pub fn problems(&self) -> &[Problem] {
         &self.problems
+    }
+
+    /// Whether the run could not start for want of a file or a place to write, rather than for what a workbook holds.
+    pub fn is_about_files(&self) -> bool {
+        let about_files = |p: &Problem| FILE_CODES.contains(&p.code);
+        !self.problems.is_empty() && self.problems.iter().all(about_files)
     }
 }
 

@@ -41,16 +41,6 @@ impl StyleMap {
     pub fn dxf(&self, index: usize) -> Option<u32> {
         self.dxf.get(index).copied()
     }
-
-    /// The map of a styles part that is taken over as it is.
-    ///
-    /// **Errors**: `bad-xml`.
-    pub fn identity(ours: &[u8]) -> Result<StyleMap> {
-        let root = Element::root(ours)?;
-        let count = |name: &str| root.child(name).map_or(0, |c| c.children.len());
-        let indices = |n: usize| (0..).take(n).collect();
-        Ok(StyleMap { xf: indices(count("cellXfs")), dxf: indices(count("dxfs")) })
-    }
 }
 
 /// The analyst's styles part with hence's cell formats added, and where they went.

@@ -136,7 +136,7 @@ impl Shape {
                 .into());
             }
             Event::GeneralRef(name) => {
-                let named: &[u8] = name.as_ref();
+                let named: &[u8] = name;
                 let known = matches!(named, b"lt" | b"gt" | b"amp" | b"apos" | b"quot")
                     || matches!(name.resolve_char_ref(), Ok(Some(_)));
                 if !known {

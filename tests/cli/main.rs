@@ -1,1 +1,48 @@
-//! x
+//! The command line as a user meets it: a spawned program, its streams and its exit status.
+
+mod check;
+mod curve;
+mod fill;
+mod help;
+mod names;
+mod schedules;
+
+use std::path::{Path, PathBuf};
+use std::process::{Command, Output};
+
+/// The program, with nothing of the caller's environment that changes its words.
+pub fn hence() -> Command {
+    let mut command = Command::new(env!("CARGO_BIN_EXE_hence"));
+    command.env_remove("HENCE_SCHEDULES").env_remove("NO_COLOR").env("TERM", "dumb");
+    command
+}
+
+/// Runs it with these arguments.
+pub fn run(args: &[&str]) -> Output {
+    hence().args(args).output().expect("the program starts")
+}
+
+pub fn stdout(output: &Output) -> String {
+    String::from_utf8(output.stdout.clone()).expect("standard output is UTF-8")
+}
+
+pub fn stderr(output: &Output) -> String {
+    String::from_utf8(output.stderr.clone()).expect("standard error is UTF-8")
+}
+
+pub fn code(output: &Output) -> i32 {
+    output.status.code().expect("the program was not killed")
+}
+
+/// A committed sample.
+pub fn sample(name: &str) -> PathBuf {
+    Path::new(env!("CARGO_MANIFEST_DIR")).join("../../samples").join(name)
+}
+
+/// A copy of a sample in a folder of its own.
+pub fn copy_of(name: &str) -> (tempfile::TempDir, PathBuf) {
+    let folder = tempfile::tempdir().expect("a temporary folder");
+    let path = folder.path().join(name);
+    std::fs::copy(sample(name), &path).expect("the sample can be copied");
+    (folder, path)
+}

@@ -77,6 +77,8 @@ fn a_date_before_the_base_counts_from_itself() {
 }
 
 proptest! {
+    #![proptest_config(crate::repeatable())]
+
     #[test]
     fn every_count_is_antisymmetric_and_rises(a in 400_000i32..1_500_000, b in 400_000i32..1_500_000) {
         let date = |days: i32| NaiveDate::from_num_days_from_ce_opt(days).unwrap();

@@ -37,6 +37,8 @@ fn nothing_is_worth_nothing() {
 }
 
 proptest! {
+    #![proptest_config(crate::repeatable())]
+
     #[test]
     fn the_order_of_flows_does_not_matter(
         stream in prop::collection::vec((0.0f64..300.0, -1e12f64..1e12), 0..60),

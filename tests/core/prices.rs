@@ -17,6 +17,8 @@ fn rates_by_hand() {
 }
 
 proptest! {
+    #![proptest_config(crate::repeatable())]
+
     #[test]
     fn real_undoes_nominal(real in -0.4f64..1.0, inflation in -0.4f64..1.0) {
         let back = real_rate(nominal_rate(real, inflation).unwrap(), inflation).unwrap();

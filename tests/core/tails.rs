@@ -74,6 +74,8 @@ fn texts_parse_and_print_in_one_form() {
 }
 
 proptest! {
+    #![proptest_config(crate::repeatable())]
+
     #[test]
     fn every_tail_prints_to_a_text_that_parses_back(
         growth in prop_oneof![-0.999f64..1.0, -1e-9f64..1e-9, Just(0.0), Just(0.1)],

@@ -64,7 +64,7 @@ fn errors_point_at_the_part() {
         let error = text.parse::<Timing>().unwrap_err();
         (error.kind(), error.at(), error.message().to_string())
     };
-    let (syntax, unsupported) = (ErrorKind::Syntax, ErrorKind::Unsupported);
+    let (syntax, no_meaning) = (ErrorKind::Syntax, ErrorKind::NoMeaning);
     assert_eq!(refused(""), (syntax, Some(0), "found \"\", expected flows or base".into()));
     assert_eq!(
         refused("flows middle, basis end"),
@@ -80,9 +80,9 @@ fn errors_point_at_the_part() {
         (syntax, Some(0), "found \"flows at end\", expected flows and one position".into())
     );
     let averaged = "the base is one moment and cannot be averaged, allowed: start, middle, end";
-    assert_eq!(refused("base averaged"), (unsupported, Some(0), averaged.into()));
+    assert_eq!(refused("base averaged"), (no_meaning, Some(0), averaged.into()));
     let built = Timing { flows: Position::End, base: Position::Averaged };
-    assert_eq!(built.offset(0.0).unwrap_err().kind(), unsupported);
+    assert_eq!(built.offset(0.0).unwrap_err().kind(), no_meaning);
 }
 
 #[test]

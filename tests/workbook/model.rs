@@ -9,7 +9,7 @@ use hence_workbook::model::{SheetKind, SheetState, Workbook};
 use hence_workbook::package::{Package, Relationship};
 use hence_workbook::references::NameTarget;
 
-use crate::small::Small;
+use crate::bare::Small;
 
 #[test]
 fn names_keep_their_scopes_and_resolve_by_them() {

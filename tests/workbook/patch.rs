@@ -87,6 +87,13 @@ fn no_write_changes_nothing_and_every_refusal_is_reported() {
 }
 
 #[test]
+fn a_cell_outside_the_sheet_is_refused() {
+    let writes = BTreeMap::from([(Cell::new(1_048_576, 0), CellWrite::Number(1.0))]);
+    let error = patch_sheet(b"<worksheet><sheetData/></worksheet>", &writes).unwrap_err();
+    assert_eq!(error.problems()[0].code, "outside-sheet");
+}
+
+#[test]
 fn a_byte_order_mark_stays() {
     let part = "\u{feff}<worksheet><sheetData/></worksheet>";
     let out = patch_sheet(part.as_bytes(), &BTreeMap::from([write("A1 number 1")])).unwrap();
@@ -95,9 +102,12 @@ fn a_byte_order_mark_stays() {
 
 #[test]
 fn a_long_shared_formula_column_is_handed_on() {
-    let mut rows = String::from("<row r=\"1\"><c r=\"A1\"><f t=\"shared\" ref=\"A1:A20000\" si=\"0\">B1+1</f></c></row>");
+    let mut rows = String::from(
+        "<row r=\"1\"><c r=\"A1\"><f t=\"shared\" ref=\"A1:A20000\" si=\"0\">B1+1</f></c></row>",
+    );
     for row in 2..=20_000 {
-        write!(rows, "<row r=\"{row}\"><c r=\"A{row}\"><f t=\"shared\" si=\"0\"/><v>1</v></c></row>").unwrap();
+        write!(rows, "<row r=\"{row}\"><c r=\"A{row}\"><f t=\"shared\" si=\"0\"/><v>1</v></c></row>")
+            .unwrap();
     }
     let part = format!("<worksheet><sheetData>{rows}</sheetData></worksheet>");
     let out = patch_sheet(part.as_bytes(), &BTreeMap::from([write("A1 number 1")])).unwrap();

@@ -2,7 +2,7 @@
 
 use super::{Cached, CellWrite, MAX_FORMULA, MAX_TEXT, problem};
 use crate::problem::{Problem, Result};
-use crate::references::Cell;
+use crate::references::{Cell, MAX_COLUMNS, MAX_ROWS};
 use crate::splice::{Kind, Tokens, bad_xml, escape, prefix, with_attribute};
 
 /// A number with the fewest digits that read back to the same double.
@@ -16,6 +16,10 @@ pub(crate) fn shortest(number: f64) -> String {
 
 /// What keeps a write from being made into any cell.
 pub(super) fn refusal(at: Cell, write: &CellWrite) -> Option<Problem> {
+    if at.row >= MAX_ROWS || at.col >= MAX_COLUMNS {
+        let what = format!("lies outside the sheet, which has {MAX_ROWS} rows and {MAX_COLUMNS} columns");
+        return Some(problem("outside-sheet", at, &what));
+    }
     let text = |what: &str, text: &str, longest: usize| {
         let length = text.chars().map(char::len_utf16).sum::<usize>();
         if escape(text).is_none() {

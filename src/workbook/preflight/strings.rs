@@ -62,13 +62,19 @@ pub(super) fn check_strings(package: &Package, part: &str) -> Result<usize> {
     Ok(count as usize)
 }
 
+/// Square brackets of one number format, at most; readers count them in a byte.
+const MAX_BRACKETS: usize = 200;
+
 /// Checks the styles part.
 pub(super) fn check_styles(package: &Package, part: &str) -> Result<()> {
     let Some(mut stream) = Stream::open(package, part)? else { return Ok(()) };
     let mut formats = 0;
     while let Some(event) = stream.next()? {
         let (Event::Start(tag) | Event::Empty(tag)) = event else { continue };
-        let long = tag.attributes().flatten().any(|attribute| attribute.value.len() > MAX_STYLE_TEXT);
+        let long = tag.attributes().flatten().any(|attribute| {
+            attribute.value.len() > MAX_STYLE_TEXT
+                || attribute.value.iter().filter(|&&c| c == b'[').count() > MAX_BRACKETS
+        });
         formats += usize::from(tag.local_name().as_ref() == b"xf");
         if long || formats > 2 * MAX_FORMATS {
             return Err(refuse(

@@ -7,7 +7,7 @@ mod coverage;
 mod discounting;
 mod lines;
 mod offsets;
-mod own;
+pub(crate) mod own;
 mod rebuild;
 mod second_route;
 mod summary;
@@ -24,7 +24,8 @@ use crate::problem::{Problem, Result};
 use crate::references::{Cell, SheetRange};
 use crate::writer::{self, Sheet, Style};
 
-pub use own::{OWN, VERDICT, digest};
+pub(crate) use checks::role_words;
+pub use own::{DIGEST, OWN, VERDICT, digest};
 pub use summary::VERDICT_AGREES;
 
 /// The visible names of hence's sheets in this workbook, chosen so that they clash with nothing.

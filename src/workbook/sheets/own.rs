@@ -9,6 +9,8 @@ use crate::writer::{Content, Sheet};
 
 /// The sheet-scoped hidden name that marks a sheet as hence's own and spans what hence wrote on it.
 pub const OWN: &str = "hence_own";
+/// The sheet-scoped hidden name that keeps the [`digest`] of the texts hence wrote on the sheet.
+pub const DIGEST: &str = "hence_digest";
 /// The name of the verdict cell.
 pub const VERDICT: &str = "hence_verdict";
 
@@ -50,9 +52,10 @@ pub fn digest(cells: &[(Cell, String)]) -> String {
     hash.finalize().iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
-/// The mark of ownership of one sheet. To be taken before notes of a person are put back, so that they
-/// stand outside of what hence calls its own. (Print titles come with the package.)
-pub(super) fn mark(sheet: &Sheet) -> NewName {
+/// The marks of ownership of one sheet: what hence wrote on it, and the digest of its texts. To be taken before notes
+/// of a person are put back, so that they stand outside of what hence calls its own. (Print titles come with the
+/// package.)
+pub(super) fn marks(sheet: &Sheet) -> [NewName; 2] {
     let texts: Vec<(Cell, String)> = sheet
         .cells()
         .filter_map(|(cell, content)| match content {
@@ -61,13 +64,17 @@ pub(super) fn mark(sheet: &Sheet) -> NewName {
         })
         .collect();
     let range = crate::formulas::absolute(sheet.used());
-    NewName {
-        name: OWN.to_owned(),
+    let mark = |name: &str, text: String| NewName {
+        name: name.to_owned(),
         scope: Some(sheet.name.clone()),
-        text: format!("{}!{range}", quote_sheet(&sheet.name)),
+        text,
         hidden: true,
-        comment: Some(digest(&texts)),
-    }
+        comment: None,
+    };
+    [
+        mark(OWN, format!("{}!{range}", quote_sheet(&sheet.name))),
+        mark(DIGEST, format!("\"{}\"", digest(&texts))),
+    ]
 }
 
 #[cfg(test)]

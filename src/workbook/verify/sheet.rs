@@ -11,88 +11,125 @@ use crate::splice::{Element, Kind, Token, Tokens, all_attributes, attribute, loc
 
 /// Refuses a new version in which anything but the written cells has changed, or those not as they should.
 pub(super) fn compare(sheet: &str, old: &[u8], new: &[u8], writes: &BTreeMap<Cell, CellWrite>) -> Result<()> {
-    let mut before = Walk::new(old)?;
-    let mut after = Walk::new(new)?;
-    let mut masters = BTreeMap::new();
-    let rows: BTreeSet<u32> = writes.keys().map(|at| at.row).collect();
-    let mut found = BTreeSet::new();
-    loop {
-        let (mut a, mut b) = (before.next()?, after.next()?);
-        // Written cells are looked at on their own; so are rows that are there only for them.
-        while let Some(Piece::Cell(at, span)) = &a
-            && writes.contains_key(at)
-        {
-            note_master(&mut masters, *at, &before.text[span.clone()])?;
-            a = before.next()?;
-        }
+    let rows = writes.keys().map(|at| at.row).collect();
+    let masters = Masters::new();
+    let (kept, found) = (BTreeMap::new(), BTreeSet::new());
+    Comparison { sheet, before: Walk::new(old)?, after: Walk::new(new)?, writes, rows, masters, kept, found }
+        .run()
+}
+
+/// Two versions of a sheet, gone through side by side.
+struct Comparison<'a> {
+    sheet: &'a str,
+    before: Walk<'a>,
+    after: Walk<'a>,
+    writes: &'a BTreeMap<Cell, CellWrite>,
+    /// The rows that cells were written into.
+    rows: BTreeSet<u32>,
+    masters: Masters,
+    /// The old text of cells whose formula has to stay.
+    kept: BTreeMap<Cell, &'a str>,
+    /// The written cells seen in the new version.
+    found: BTreeSet<Cell>,
+}
+
+impl Comparison<'_> {
+    fn run(mut self) -> Result<()> {
         loop {
-            match &b {
-                Some(Piece::Cell(at, span)) if writes.contains_key(at) => {
-                    let holds = holds(&after.text[span.clone()], &writes[at])?;
-                    if !holds || !found.insert(*at) {
-                        let place = Place::cells(sheet, Range::cell(*at));
-                        return Err(differs(place, "the cell does not hold what was to be written"));
-                    }
-                }
-                Some(Piece::Row(row, _))
-                    if rows.contains(row) && !matches!(&a, Some(Piece::Row(r, _)) if r == row) =>
-                {
-                    loop {
-                        match after.next()? {
-                            Some(Piece::EndRow) => break,
-                            Some(Piece::Cell(at, span)) if writes.contains_key(&at) => {
-                                if !holds(&after.text[span], &writes[&at])? || !found.insert(at) {
-                                    let place = Place::cells(sheet, Range::cell(at));
-                                    return Err(differs(
-                                        place,
-                                        "the cell does not hold what was to be written",
-                                    ));
-                                }
-                            }
-                            _ => {
-                                return Err(differs(
-                                    sheet_place(sheet),
-                                    "a new row holds more than was written",
-                                ));
-                            }
-                        }
-                    }
-                }
-                _ => break,
+            let a = self.old_piece()?;
+            let b = self.new_piece(a.as_ref())?;
+            if a.is_none() && b.is_none() {
+                break;
             }
-            b = after.next()?;
+            if !self.same(a.as_ref(), b.as_ref())? {
+                let place = match a {
+                    Some(Piece::Cell(at, _)) => Place::cells(self.sheet, Range::cell(at)),
+                    _ => sheet_place(self.sheet),
+                };
+                return Err(differs(place, "something that was not to be written has changed"));
+            }
         }
-        let same = match (&a, &b) {
-            (None, None) => break,
-            (Some(Piece::Row(..)), Some(Piece::Row(..))) | (Some(Piece::Data(_)), Some(Piece::Data(_))) => {
-                let (a, b) = (a.as_ref().map(Piece::span), b.as_ref().map(Piece::span));
-                same_tag(&before.text[a.unwrap_or_default()], &after.text[b.unwrap_or_default()])?
+        let lost = |(at, write): &(&Cell, &CellWrite)| write.overwrites() && !self.found.contains(at);
+        match self.writes.iter().find(lost) {
+            Some((at, _)) => {
+                let place = Place::cells(self.sheet, Range::cell(*at));
+                Err(differs(place, "the cell is missing from the output"))
+            }
+            None => Ok(()),
+        }
+    }
+
+    /// The next old piece that is no written cell.
+    fn old_piece(&mut self) -> Result<Option<Piece>> {
+        loop {
+            let piece = self.before.next()?;
+            let Some(Piece::Cell(at, span)) = &piece else { return Ok(piece) };
+            let text = &self.before.text[span.clone()];
+            note_master(&mut self.masters, *at, text)?;
+            match self.writes.get(at) {
+                None => return Ok(piece),
+                Some(CellWrite::DropValue) => {
+                    self.kept.insert(*at, text);
+                }
+                Some(_) => {}
+            }
+        }
+    }
+
+    /// The next new piece that is no written cell and no row that is there only for such cells.
+    fn new_piece(&mut self, old: Option<&Piece>) -> Result<Option<Piece>> {
+        let mut new_row = false;
+        loop {
+            let piece = self.after.next()?;
+            match &piece {
+                Some(Piece::Cell(at, span)) if self.writes.contains_key(at) => {
+                    self.written(*at, span.clone())?
+                }
+                Some(Piece::EndRow) if new_row => new_row = false,
+                _ if new_row => {
+                    return Err(differs(sheet_place(self.sheet), "a new row holds more than was written"));
+                }
+                Some(Piece::Row(row, _)) if self.rows.contains(row) => {
+                    new_row = !matches!(old, Some(Piece::Row(there, _)) if there == row);
+                    if !new_row {
+                        return Ok(piece);
+                    }
+                }
+                _ => return Ok(piece),
+            }
+        }
+    }
+
+    /// Checks a written cell.
+    fn written(&mut self, at: Cell, span: Span<usize>) -> Result<()> {
+        let cell = &self.after.text[span];
+        let write = &self.writes[&at];
+        let formula_kept = match self.kept.get(&at) {
+            Some(old) => same_formula(at, old, cell, &self.masters)?,
+            None => true,
+        };
+        if holds(cell, write)? && formula_kept && self.found.insert(at) {
+            return Ok(());
+        }
+        let place = Place::cells(self.sheet, Range::cell(at));
+        Err(differs(place, "the cell does not hold what was to be written"))
+    }
+
+    fn same(&self, a: Option<&Piece>, b: Option<&Piece>) -> Result<bool> {
+        let (before, after) = (self.before.text, self.after.text);
+        Ok(match (a, b) {
+            (Some(Piece::Row(_, a)), Some(Piece::Row(_, b)))
+            | (Some(Piece::Data(a)), Some(Piece::Data(b))) => {
+                same_tag(&before[a.clone()], &after[b.clone()])?
             }
             (Some(Piece::EndRow), Some(Piece::EndRow)) | (Some(Piece::EndData), Some(Piece::EndData)) => true,
             (Some(Piece::Cell(at, a)), Some(Piece::Cell(other, b))) => {
-                let (a, b) = (&before.text[a.clone()], &after.text[b.clone()]);
-                at == other && (a == b || handed_on(*at, a, b, &mut masters)?)
+                let (a, b) = (&before[a.clone()], &after[b.clone()]);
+                at == other && (a == b || handed_on(*at, a, b, &self.masters)?)
             }
-            (Some(Piece::Other(a)), Some(Piece::Other(b))) => before.text[a.clone()] == after.text[b.clone()],
+            (Some(Piece::Other(a)), Some(Piece::Other(b))) => before[a.clone()] == after[b.clone()],
             _ => false,
-        };
-        if let Some(Piece::Cell(at, span)) = &a {
-            note_master(&mut masters, *at, &before.text[span.clone()])?;
-        }
-        if !same {
-            let place = match &a {
-                Some(Piece::Cell(at, _)) => Place::cells(sheet, Range::cell(*at)),
-                _ => sheet_place(sheet),
-            };
-            return Err(differs(place, "something that was not to be written has changed"));
-        }
-    }
-    let lost = |(at, write): &(&Cell, &CellWrite)| write.overwrites() && !found.contains(at);
-    match writes.iter().find(lost) {
-        Some((at, _)) => {
-            Err(differs(Place::cells(sheet, Range::cell(*at)), "the cell is missing from the output"))
-        }
-        None => Ok(()),
+        })
     }
 }
 
@@ -116,17 +153,28 @@ fn note_master(masters: &mut Masters, at: Cell, cell: &str) -> Result<()> {
 }
 
 /// Is the new cell the old dependent of a shared formula, with that formula as its own?
-fn handed_on(at: Cell, old: &str, new: &str, masters: &mut Masters) -> Result<bool> {
+fn handed_on(at: Cell, old: &str, new: &str, masters: &Masters) -> Result<bool> {
     let (old_root, new_root) = (Element::root(old.as_bytes())?, Element::root(new.as_bytes())?);
     let (Some(f), Some(own)) = (old_root.child("f"), new_root.child("f")) else { return Ok(false) };
+    let rest = |cell: &str, f: &Element| format!("{}{}", &cell[..f.span.start], &cell[f.span.end..]);
+    Ok(rest(old, f) == rest(new, own) && same_formula(at, old, new, masters)?)
+}
+
+/// Do two versions of a cell hold one formula: the same element, or the shared one as their own?
+fn same_formula(at: Cell, old: &str, new: &str, masters: &Masters) -> Result<bool> {
+    let (old_root, new_root) = (Element::root(old.as_bytes())?, Element::root(new.as_bytes())?);
+    let (f, own) = match (old_root.child("f"), new_root.child("f")) {
+        (Some(f), Some(own)) => (f, own),
+        (f, own) => return Ok(f.is_none() && own.is_none()),
+    };
+    if old[f.span.clone()] == new[own.span.clone()] {
+        return Ok(true);
+    }
     let Some(index) = f.attribute("si")? else { return Ok(false) };
     let Some((master, formula)) = masters.get(index.as_ref()) else { return Ok(false) };
     let d_row = i64::from(at.row) - i64::from(master.row);
     let d_col = i64::from(at.col) - i64::from(master.col);
-    let rest = |cell: &str, f: &Element| format!("{}{}", &cell[..f.span.start], &cell[f.span.end..]);
-    Ok(own.attribute("t")?.is_none()
-        && characters(new, own)? == shift(formula, d_row, d_col)
-        && rest(old, f) == rest(new, own))
+    Ok(own.attribute("t")?.is_none() && characters(new, own)? == shift(formula, d_row, d_col))
 }
 
 /// Does a cell hold what was written?
@@ -188,17 +236,6 @@ enum Piece {
     EndRow,
     Cell(Cell, Span<usize>),
     Other(Span<usize>),
-}
-
-impl Piece {
-    fn span(&self) -> Span<usize> {
-        match self {
-            Piece::Data(span) | Piece::Row(_, span) | Piece::Cell(_, span) | Piece::Other(span) => {
-                span.clone()
-            }
-            Piece::EndData | Piece::EndRow => 0..0,
-        }
-    }
 }
 
 impl<'a> Walk<'a> {

@@ -1,0 +1,89 @@
+//! Pointers and lengths become slices here, after every check that must come first.
+
+use std::ffi::CStr;
+
+use libc::c_char;
+
+use crate::error::Failure;
+use crate::status::{
+    HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_NOT_FINITE, HENCE_ERR_NULL, HENCE_ERR_OVERLAP,
+    HENCE_ERR_UTF8,
+};
+
+/// The longest array accepted, in elements.
+pub const HENCE_LENGTH_MAX: usize = 1_073_741_824;
+
+fn check<T>(pointer: *const T, length: usize, argument: i32) -> Result<(), Failure> {
+    if length > HENCE_LENGTH_MAX {
+        let message = format!("length {length}, allowed at most {HENCE_LENGTH_MAX}");
+        return Err(Failure::new(HENCE_ERR_LENGTH, argument + 1, message));
+    }
+    if pointer.is_null() {
+        return Err(Failure::new(HENCE_ERR_NULL, argument, "the pointer is NULL"));
+    }
+    if !pointer.is_aligned() {
+        return Err(Failure::new(HENCE_ERR_ALIGNMENT, argument, "the pointer is not aligned for its type"));
+    }
+    Ok(())
+}
+
+/// A borrowed input array of finite numbers. `argument` counts from 1; the length is the next argument.
+///
+/// # Safety
+/// `pointer` is NULL, or readable for `length` doubles until the call returns.
+pub(crate) unsafe fn numbers<'a>(
+    pointer: *const f64,
+    length: usize,
+    argument: i32,
+) -> Result<&'a [f64], Failure> {
+    if length == 0 {
+        return Ok(&[]);
+    }
+    check(pointer, length, argument)?;
+    // SAFETY: not NULL, aligned, and readable for `length` elements by the caller's contract.
+    let slice = unsafe { std::slice::from_raw_parts(pointer, length) };
+    if let Some(i) = slice.iter().position(|x| !x.is_finite()) {
+        let message = format!("{} is not finite", slice[i]);
+        let mut failure = Failure::new(HENCE_ERR_NOT_FINITE, argument, message);
+        failure.index = i as i64;
+        return Err(failure);
+    }
+    Ok(slice)
+}
+
+/// Checks an output array, to be written only once the result is known.
+pub(crate) fn output<T>(pointer: *mut T, length: usize, argument: i32) -> Result<(), Failure> {
+    if length == 0 { Ok(()) } else { check(pointer, length, argument) }
+}
+
+/// Refuses an output that overlaps an input of the same length.
+pub(crate) fn apart(
+    input: *const f64,
+    output: *const f64,
+    length: usize,
+    argument: i32,
+) -> Result<(), Failure> {
+    let bytes = length.saturating_mul(std::mem::size_of::<f64>());
+    let (a, b) = (input as usize, output as usize);
+    if length > 0 && a < b.saturating_add(bytes) && b < a.saturating_add(bytes) {
+        return Err(Failure::new(HENCE_ERR_OVERLAP, argument, "the output overlaps an input"));
+    }
+    Ok(())
+}
+
+/// A borrowed text.
+///
+/// # Safety
+/// `pointer` is NULL or a NUL-ended text that lives until the call returns.
+pub(crate) unsafe fn text<'a>(pointer: *const c_char, argument: i32) -> Result<&'a str, Failure> {
+    if pointer.is_null() {
+        return Err(Failure::new(HENCE_ERR_NULL, argument, "the text is NULL"));
+    }
+    // SAFETY: not NULL, and NUL-ended by the caller's contract.
+    let bytes = unsafe { CStr::from_ptr(pointer) };
+    bytes.to_str().map_err(|e| {
+        let mut failure = Failure::new(HENCE_ERR_UTF8, argument, "the text is not UTF-8");
+        failure.index = e.valid_up_to() as i64;
+        failure
+    })
+}

@@ -1,0 +1,111 @@
+//! `hence check`: what a workbook holds against what its declared basis gives.
+
+use std::path::PathBuf;
+
+use hence_workbook::check::{CheckReport, check_file};
+use serde::Serialize;
+
+use crate::args::Check;
+use crate::json::{Document, Found};
+use crate::numbers::shortest;
+use crate::terminal::{Terminal, escape};
+use crate::{Failure, Outcome, render, terminal};
+
+#[derive(Serialize)]
+struct CheckedBook {
+    input: String,
+    status: hence_workbook::report::Status,
+    agree: usize,
+    not_filled: Vec<String>,
+    differences: Vec<DifferenceOut>,
+    problems: Vec<Found>,
+}
+
+#[derive(Serialize)]
+struct DifferenceOut {
+    place: String,
+    role: String,
+    found: String,
+    expected: Option<f64>,
+    difference: Option<f64>,
+}
+
+/// Exit 0 when all agree, 1 on any difference.
+pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
+    let catalogue = super::catalogue(schedules)?;
+    let roles = super::fill::roles(&args.roles)?;
+    let name = super::fill::file_name(&args.book);
+    let shown = args.book.display().to_string();
+    match check_file(&args.book, &roles, &catalogue) {
+        Ok(report) => {
+            render::problems(terminal, &name, &report.problems);
+            terminal::print(&if args.json { json(shown, &report) } else { text(&shown, &report) })?;
+            Ok(if report.agrees() { Outcome::Done } else { Outcome::Wrong })
+        }
+        Err(error) => {
+            render::problems(terminal, &name, error.problems());
+            if args.json {
+                let book = CheckedBook {
+                    input: shown,
+                    status: hence_workbook::report::Status::Failed,
+                    agree: 0,
+                    not_filled: Vec::new(),
+                    differences: Vec::new(),
+                    problems: error.problems().iter().map(Found::from).collect(),
+                };
+                terminal::print(&Document::text(vec![book]))?;
+            }
+            Ok(if error.is_about_files() { Outcome::CouldNotRun } else { Outcome::Wrong })
+        }
+    }
+}
+
+fn json(input: String, report: &CheckReport) -> String {
+    let differences = report
+        .differences
+        .iter()
+        .map(|d| DifferenceOut {
+            place: d.place.to_string(),
+            role: d.role.clone(),
+            found: d.found.clone(),
+            expected: d.expected,
+            difference: d.difference,
+        })
+        .collect();
+    Document::text(vec![CheckedBook {
+        input,
+        status: report.status(),
+        agree: report.agree,
+        not_filled: report.not_filled.iter().map(ToString::to_string).collect(),
+        differences,
+        problems: report.problems.iter().map(Found::from).collect(),
+    }])
+}
+
+fn text(input: &str, report: &CheckReport) -> String {
+    let mut text = String::new();
+    if !report.differences.is_empty() {
+        let mut rows = vec![["Cell", "Role", "Found", "Expected", "Difference"].map(String::from).to_vec()];
+        for d in &report.differences {
+            rows.push(vec![
+                d.place.to_string(),
+                d.role.clone(),
+                d.found.clone(),
+                d.expected.map_or_else(|| "no number".into(), shortest),
+                d.difference.map(shortest).unwrap_or_default(),
+            ]);
+        }
+        text.push_str(&render::table(&rows));
+        text.push('\n');
+    }
+    for place in &report.not_filled {
+        text.push_str(&format!("{place}: not filled\n"));
+    }
+    let verdict = match (report.differences.len(), report.agree) {
+        (0, 0) => "nothing was filled, so nothing was compared".to_owned(),
+        (0, agree) => format!("all {agree} filled cells agree with the declared basis"),
+        (differ, agree) => format!("{differ} cells differ, {agree} agree"),
+    };
+    text.push_str(&format!("{input}: {verdict}\n"));
+    escape(&text)
+}

@@ -1,0 +1,100 @@
+//! The JSON documents: one shape a command, with a schema number.
+
+use hence_workbook::problem::{Problem, Severity};
+use hence_workbook::report::{OptionReport, Report, Status};
+use serde::Serialize;
+
+#[derive(Serialize)]
+pub struct Document<T: Serialize> {
+    pub schema: u32,
+    pub books: Vec<T>,
+}
+
+impl<T: Serialize> Document<T> {
+    /// The document as text.
+    pub fn text(books: Vec<T>) -> String {
+        let document = Document { schema: 1, books };
+        let mut text = serde_json::to_string_pretty(&document).unwrap_or_default();
+        text.push('\n');
+        text
+    }
+}
+
+#[derive(Serialize)]
+pub struct FilledBook {
+    pub input: String,
+    pub output: Option<String>,
+    pub status: Status,
+    pub options: Vec<FilledOption>,
+    pub problems: Vec<Found>,
+}
+
+#[derive(Serialize)]
+pub struct FilledOption {
+    pub option: String,
+    pub npv: f64,
+    pub pv_benefits: f64,
+    pub pv_costs: f64,
+    pub ratio: Option<f64>,
+    pub annual: Option<f64>,
+}
+
+#[derive(Serialize)]
+pub struct Found {
+    pub code: &'static str,
+    pub severity: Severity,
+    pub place: String,
+    pub message: String,
+    #[serde(rename = "try")]
+    pub hint: Option<String>,
+}
+
+impl From<&OptionReport> for FilledOption {
+    fn from(option: &OptionReport) -> Self {
+        let totals = option.totals();
+        FilledOption {
+            option: option.name.clone(),
+            npv: totals.npv,
+            pv_benefits: totals.pv_benefits,
+            pv_costs: totals.pv_costs,
+            ratio: totals.ratio,
+            annual: totals.annual,
+        }
+    }
+}
+
+impl From<&Problem> for Found {
+    fn from(problem: &Problem) -> Self {
+        Found {
+            code: problem.code,
+            severity: problem.severity,
+            place: problem.place.to_string(),
+            message: problem.message.clone(),
+            hint: problem.hint.clone(),
+        }
+    }
+}
+
+impl FilledBook {
+    /// A workbook that was filled.
+    pub fn filled(input: String, output: String, report: &Report) -> Self {
+        FilledBook {
+            input,
+            output: Some(output),
+            status: report.status(),
+            options: report.options.iter().map(FilledOption::from).collect(),
+            problems: report.problems.iter().map(Found::from).collect(),
+        }
+    }
+
+    /// A workbook that was not.
+    pub fn failed(input: String, problems: &[Problem]) -> Self {
+        FilledBook {
+            input,
+            output: None,
+            status: Status::Failed,
+            options: Vec::new(),
+            problems: problems.iter().map(Found::from).collect(),
+        }
+    }
+}

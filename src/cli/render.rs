@@ -1,0 +1,179 @@
+//! Reports as text for people.
+
+use hence_workbook::problem::{Problem, Severity};
+use hence_workbook::report::{OptionReport, Report};
+
+use crate::numbers::{money, percent};
+use crate::terminal::{Terminal, escape};
+
+/// After so many problems only a count of the rest is printed.
+const MOST_PROBLEMS: usize = 20;
+
+/// Problems to standard error: place, what was found, the code; then what to do.
+pub fn problems(terminal: &Terminal, file: &str, problems: &[Problem]) {
+    for problem in problems.iter().take(MOST_PROBLEMS) {
+        let severity = match problem.severity {
+            Severity::Error => "error",
+            Severity::Warning => "warning",
+            Severity::Note => "note",
+        };
+        let mut line = format!("{file}, {problem}");
+        if let Some(hint) = &problem.hint {
+            line.push_str(&format!("\n  Try: {hint}"));
+        }
+        terminal.say(severity, &line);
+    }
+    if problems.len() > MOST_PROBLEMS {
+        terminal.say("note", &format!("{file}: {} more problems", problems.len() - MOST_PROBLEMS));
+    }
+}
+
+/// A table with a left-aligned first column and right-aligned others.
+pub fn table(rows: &[Vec<String>]) -> String {
+    let columns = rows.iter().map(Vec::len).max().unwrap_or(0);
+    let width = |c: usize| rows.iter().filter_map(|r| r.get(c)).map(|s| s.chars().count()).max().unwrap_or(0);
+    let widths: Vec<usize> = (0..columns).map(width).collect();
+    let mut text = String::new();
+    for row in rows {
+        let mut line = String::new();
+        for (c, cell) in row.iter().enumerate() {
+            let pad = " ".repeat(widths[c] - cell.chars().count());
+            if c == 0 {
+                line.push_str(&format!("{cell}{pad}"));
+            } else {
+                line.push_str(&format!("  {pad}{cell}"));
+            }
+        }
+        text.push_str(line.trim_end());
+        text.push('\n');
+    }
+    text
+}
+
+/// The report on one filled workbook.
+pub fn report(input: &str, output: &str, report: &Report) -> String {
+    let mut text = format!("{input} -> {output}\n");
+    for (names, option) in grouped(&report.options) {
+        if names.len() < report.options.len() {
+            text.push_str(&format!("\n{}:\n", names.join(", ")));
+        }
+        text.push_str(&format!("Basis   {}\n        {}\n", option.basis, option.basis_words));
+        text.push_str(&format!("Base    {}\nTiming  {}\n", option.base, option.timing));
+    }
+    text.push('\n');
+    text.push_str(&table(&totals_rows(report)));
+    text.push('\n');
+    for option in &report.options {
+        text.push_str(&details(option));
+    }
+    text.push_str(&format!(
+        "\n{} cells filled, {} formulas ticked. Verdict: {}.\n{}\n",
+        report.filled,
+        report.ticked,
+        report.verdict,
+        hence_core::CAUTION
+    ));
+    escape(&text)
+}
+
+/// Options that share basis, base and timing.
+fn grouped(options: &[OptionReport]) -> Vec<(Vec<&str>, &OptionReport)> {
+    let mut groups: Vec<(Vec<&str>, &OptionReport)> = Vec::new();
+    for option in options {
+        let same =
+            |o: &OptionReport| o.basis == option.basis && o.base == option.base && o.timing == option.timing;
+        match groups.iter_mut().find(|(_, o)| same(o)) {
+            Some((names, _)) => names.push(&option.name),
+            None => groups.push((vec![&option.name], option)),
+        }
+    }
+    groups
+}
+
+fn totals_rows(report: &Report) -> Vec<Vec<String>> {
+    let over = report.options.iter().any(|o| o.increment.is_some());
+    let mut head: Vec<String> =
+        ["Option", "Benefits", "Costs", "PV benefits", "PV costs"].map(String::from).to_vec();
+    if over {
+        head.push("NPV as it stands".into());
+        head.push("NPV over baseline".into());
+    } else {
+        head.push("NPV".into());
+    }
+    head.push("Ratio".into());
+    head.push("Annual equivalent".into());
+    let mut rows = vec![head];
+    for option in &report.options {
+        let a = &option.absolute;
+        let mut row = vec![option.name.clone()];
+        row.extend([a.benefits, a.costs, a.pv_benefits, a.pv_costs, a.npv].map(money));
+        if over {
+            row.push(option.increment.map_or_else(|| "baseline".into(), |i| money(i.npv)));
+        }
+        row.push(option.totals().ratio.map_or_else(|| "-".into(), |r| format!("{r:.2}")));
+        row.push(option.totals().annual.map_or_else(|| "-".into(), money));
+        rows.push(row);
+    }
+    rows
+}
+
+/// What stands behind the table, a few lines an option.
+fn details(option: &OptionReport) -> String {
+    let mut text = format!("{}:", option.name);
+    if option.baseline {
+        text.push_str(" the baseline;");
+    }
+    let list = |names: &[String]| if names.is_empty() { "nothing".to_owned() } else { names.join(", ") };
+    text.push_str(&format!(
+        " above the line {}; below it {}; annual equivalent over {} service years",
+        list(&option.above),
+        list(&option.below),
+        option.service_years
+    ));
+    let rates: Vec<String> = option.irr.iter().map(|r| percent(*r)).collect();
+    text.push_str(&match rates.len() {
+        0 => "; no internal rate of return between -50% and 100%".to_owned(),
+        1 => format!("; internal rate of return {}", rates[0]),
+        _ => format!("; internal rates of return {}", rates.join(", ")),
+    });
+    match (option.payback.first, option.payback.last) {
+        (Some(first), Some(last)) if first == last => {
+            text.push_str(&format!("; discounted payback after {first:.1} years"));
+        }
+        (Some(first), Some(last)) => {
+            text.push_str(&format!(
+                "; discounted payback first after {first:.1}, for good after {last:.1} years"
+            ));
+        }
+        (Some(first), None) => {
+            text.push_str(&format!("; pays back after {first:.1} years, but not for good"))
+        }
+        _ => text.push_str("; no discounted payback"),
+    }
+    if let Some(mean) = option.mean_time {
+        text.push_str(&format!("; mean time {mean:.1} years"));
+    }
+    if let Some(value) = option.npv_per_budget {
+        text.push_str(&format!("; NPV per unit of budget {value:.3}"));
+    }
+    for (name, plain, discounted) in &option.effects {
+        let show = |x: &Option<f64>| x.map_or_else(|| "-".into(), money);
+        text.push_str(&format!(
+            "; cost per unit of {name} {} (effect undiscounted), {} (discounted)",
+            show(plain),
+            show(discounted)
+        ));
+    }
+    text.push_str(".\n");
+    if let Some(companion) = &option.companion {
+        text.push_str(&format!(
+            "    Beside it, on {}: PV benefits {}, PV costs {}, NPV {}. {}\n",
+            companion.id,
+            money(companion.totals.pv_benefits),
+            money(companion.totals.pv_costs),
+            money(companion.totals.npv),
+            companion.words
+        ));
+    }
+    text
+}

@@ -1,0 +1,353 @@
+//! The main job: an analyst's workbook in, its targets filled, an audited workbook out.
+
+use std::collections::{BTreeMap, BTreeSet};
+use std::path::Path;
+
+use hence_core::{Basis, Catalogue};
+use sha2::{Digest, Sha256};
+
+use crate::appraisal::{Appraisal, Given};
+use crate::graft::{Graft, graft};
+use crate::layout::Layout;
+use crate::model::Workbook;
+use crate::outcome::ChoiceOutcome;
+use crate::own::{self, OwnSheet};
+use crate::package::{Package, same_file, write_atomically};
+use crate::patch::{CellWrite, patch_sheet};
+use crate::plan::{Plan, plan_targets};
+use crate::preflight::preflight;
+use crate::problem::{Place, Problem, Result, WorkbookError};
+use crate::reading::Sheets;
+use crate::references::SheetRange;
+use crate::report::{Companion, Report, option_reports};
+use crate::resolve::{Options, resolve};
+use crate::sheets::{AuditInput, Meta, SheetNames, build};
+use crate::stale;
+use crate::valuation::{from_core, value};
+use crate::verify::{Expected, verify};
+
+/// What the run is told besides the workbook.
+#[derive(Clone, Debug)]
+pub struct FillRequest {
+    /// Value on this basis, and write it into the basis cell.
+    pub basis: Option<String>,
+    /// Change the basis from the first to the second; another basis is refused.
+    pub replace: Option<(String, String)>,
+    /// Roles for cells without a defined name: role, range.
+    pub roles: Vec<(String, String)>,
+    /// Targets get live formulas; else plain numbers.
+    pub formulas: bool,
+    /// Formulas found in targets are replaced, not compared.
+    pub replace_formulas: bool,
+    /// For the audit summary.
+    pub as_of: Option<String>,
+    /// For the audit summary.
+    pub by: Option<String>,
+}
+
+impl Default for FillRequest {
+    fn default() -> Self {
+        FillRequest {
+            basis: None,
+            replace: None,
+            roles: Vec::new(),
+            formulas: true,
+            replace_formulas: false,
+            as_of: None,
+            by: None,
+        }
+    }
+}
+
+/// A filled workbook that has not been written yet.
+#[derive(Debug)]
+pub struct Filled {
+    /// The output package.
+    pub bytes: Vec<u8>,
+    /// What was found and done.
+    pub report: Report,
+}
+
+/// Fills one workbook file. The output appears whole under its name, or not at all; the input is never written.
+///
+/// # Errors
+/// Everything that keeps the workbook from being filled, each with its cell; or that the output exists and `force` is
+/// false, or is the input.
+pub fn fill_file(
+    input: &Path,
+    output: &Path,
+    request: &FillRequest,
+    catalogue: &Catalogue,
+    force: bool,
+) -> Result<Report> {
+    let package = Package::open(input)?;
+    let place = || Place::name(&output.display().to_string());
+    if same_file(input, output) {
+        return Err(Problem::error("output-is-input", place(), "the output would replace the input")
+            .hint("give --out another name")
+            .into());
+    }
+    if output.exists() && !force {
+        return Err(Problem::error("output-exists", place(), "there is such a file already")
+            .hint("--force to replace it, or --out with another name")
+            .into());
+    }
+    let filled = fill(&package, request, catalogue)?;
+    write_atomically(output, &filled.bytes, force)?;
+    Ok(filled.report)
+}
+
+/// Fills one workbook in memory.
+///
+/// # Errors
+/// As [`fill_file`].
+pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> Result<Filled> {
+    let mut problems = preflight(package)?;
+    package.graftable().map_err(|problem| WorkbookError::from(*problem))?;
+    let book = Workbook::read(package)?;
+    let previous = own::own_sheets(&book);
+    let stated = request.replace.as_ref().map(|(_, new)| new).or(request.basis.as_ref());
+    // A basis given on the command line stands in where the workbook has none; where it has one, the cell is kept so
+    // that the new basis can be written into it.
+    let mut appraisal =
+        resolve(package, &book, &Options { roles: &request.roles, basis: stated.map(String::as_str) })?;
+    problems.append(&mut appraisal.problems);
+    // What the workbook itself declares, where it does.
+    let declared = match stated {
+        Some(_) => resolve(package, &book, &Options { roles: &request.roles, basis: None }).ok(),
+        None => None,
+    };
+    if let Some((old, _)) = &request.replace {
+        require_basis(&appraisal, declared.as_ref(), old, catalogue)?;
+    }
+    let (outcomes, found) = value(&appraisal, catalogue)?;
+    problems.extend(found);
+    let companions = companions(&appraisal, &outcomes, catalogue)?;
+    let names = SheetNames::choose(&foreign_sheets(&book, &previous));
+    let layout = Layout::new(&appraisal, &outcomes, &names);
+
+    let mut plan =
+        plan_targets(&appraisal, &outcomes, &layout, &previous, request.formulas, request.replace_formulas);
+    if let Some(basis) = stated {
+        plan_basis(&mut plan, package, &book, &appraisal, declared.as_ref(), basis)?;
+    }
+    problems.append(&mut plan.problems);
+    let carried = own::carried(package, &book, &previous, &names)?;
+
+    let written: Vec<SheetRange> = plan.changed.clone();
+    let dependents = stale::dependents(package, &book, &written)?;
+    problems.extend(dependents.warnings);
+    for (sheet, cells) in dependents.cells {
+        let name = &book.sheets[sheet].name;
+        if previous.iter().any(|own| own.index == sheet) {
+            continue;
+        }
+        let writes = plan.writes.entry(name.clone()).or_default();
+        for cell in cells {
+            writes.entry(cell).or_insert(CellWrite::DropValue);
+        }
+    }
+
+    let meta = meta(package, &outcomes, request);
+    let input = AuditInput {
+        appraisal: &appraisal,
+        outcomes: &outcomes,
+        names: &names,
+        meta: &meta,
+        cells: &plan.cells,
+        changes: &plan.changes,
+        problems: &problems,
+        carried: &carried,
+        differs: &differs(),
+    };
+    let built = build(&input, &layout)?;
+    let mut patched: BTreeMap<String, Vec<u8>> = BTreeMap::new();
+    for (name, writes) in &plan.writes {
+        let Some(index) = book.sheet_index(name) else { continue };
+        let part = &book.sheets[index].part;
+        let xml = package.part(part)?.unwrap_or_default();
+        let new = patch_sheet(&xml, writes).map_err(|error| in_sheet(error, name))?;
+        patched.insert(part.clone(), new);
+    }
+    let ours = Package::from_bytes("audit.xlsx", built.bytes)?;
+    let leaving: Vec<String> = previous.iter().map(|sheet| sheet.name.clone()).collect();
+    let grafted = graft(
+        package,
+        &Graft {
+            ours: &ours,
+            previous: &leaving,
+            set_names: &built.names,
+            remove_names: &[],
+            charts: &built.charts,
+        },
+    )?;
+    let mut changes = grafted.changes;
+    changes.replace.extend(patched);
+    let bytes = package.write(&changes)?;
+    verify(
+        package,
+        &bytes,
+        &Expected { changes: &changes, writes: &plan.writes, own_sheets: &grafted.sheets },
+    )?;
+    let options = option_reports(&appraisal, &outcomes, &companions);
+    let report = Report {
+        options,
+        problems,
+        filled: plan.filled,
+        ticked: plan.ticked,
+        verdict: built.verdict.clone(),
+    };
+    Ok(Filled { bytes, report })
+}
+
+/// The basis that the workbook itself declares must be OLD in every option.
+fn require_basis(
+    appraisal: &Appraisal,
+    declared: Option<&Appraisal>,
+    old: &str,
+    catalogue: &Catalogue,
+) -> Result<()> {
+    let parse =
+        |text: &str, place: Place| Basis::parse(text, catalogue).map_err(|error| from_core(&error, place));
+    let wanted = parse(old, Place::name("--replace"))?.canonical();
+    let Some(declared) = declared else {
+        let place = Place::name(&appraisal.choices[0].name);
+        let message = format!("the workbook declares no basis, so it is not {wanted}");
+        return Err(Problem::error("basis-differs", place, message)
+            .hint("--basis instead of --replace")
+            .into());
+    };
+    let mut problems = Vec::new();
+    for choice in &declared.choices {
+        let place = given_place(&choice.basis);
+        let found = parse(&choice.basis.value, place.clone())?.canonical();
+        let problem = Problem::error("basis-differs", place, format!("the basis is {found}, not {wanted}"))
+            .hint("leave this workbook out, or name its basis in --replace");
+        if found != wanted && !problems.contains(&problem) {
+            problems.push(problem);
+        }
+    }
+    if problems.is_empty() { Ok(()) } else { Err(problems.into()) }
+}
+
+/// The new basis goes into every cell that states the old one.
+fn plan_basis(
+    plan: &mut Plan,
+    package: &Package,
+    book: &Workbook,
+    appraisal: &Appraisal,
+    declared: Option<&Appraisal>,
+    basis: &str,
+) -> Result<()> {
+    let mut seen = BTreeSet::new();
+    for (i, choice) in appraisal.choices.iter().enumerate() {
+        let Some(at) = &choice.basis.at else {
+            let problem = Problem::warning(
+                "no-basis-cell",
+                Place::name(&choice.name),
+                "the workbook states no basis in a cell, so the new one stands on the audit sheets alone",
+            )
+            .hint("name a cell hence_basis");
+            plan.problems.push(problem);
+            continue;
+        };
+        let before = declared.map(|d| d.choices[i].basis.value.clone()).unwrap_or_default();
+        if before == basis || !seen.insert(at.clone()) {
+            continue;
+        }
+        let held = Sheets::open(package, book)?.range(at)?;
+        if held.get(at.range.first).is_some_and(|cell| cell.formula.is_some()) {
+            let message = "the basis cell holds a formula, which would be lost";
+            return Err(Problem::error("basis-formula", given_place(&choice.basis), message)
+                .hint("give the name hence_basis to the cell that the formula takes it from")
+                .into());
+        }
+        plan.write(at.clone(), "basis".to_owned(), before, CellWrite::Text(basis.to_owned()));
+    }
+    Ok(())
+}
+
+fn given_place<T>(given: &Given<T>) -> Place {
+    match &given.at {
+        Some(at) => Place::cells(&at.sheet, at.range).called(&given.from),
+        None => Place::name(&given.from),
+    }
+}
+
+/// The names of sheets that are not hence's own.
+fn foreign_sheets(book: &Workbook, previous: &[OwnSheet]) -> Vec<String> {
+    let own: BTreeSet<usize> = previous.iter().map(|sheet| sheet.index).collect();
+    let sheets = book.sheets.iter().enumerate();
+    sheets.filter(|(i, _)| !own.contains(i)).map(|(_, sheet)| sheet.name.clone()).collect()
+}
+
+/// Every option again under the companion of its schedule, where its years reach beyond the companion's horizon.
+fn companions(
+    appraisal: &Appraisal,
+    outcomes: &[ChoiceOutcome],
+    catalogue: &Catalogue,
+) -> Result<Vec<Option<Companion>>> {
+    let wanted: Vec<Option<String>> = outcomes
+        .iter()
+        .map(|outcome| {
+            let (id, beyond) = outcome.basis.companion()?;
+            let reach = outcome.offsets.iter().copied().fold(0.0, f64::max);
+            (reach > beyond).then(|| id.to_owned())
+        })
+        .collect();
+    if wanted.iter().all(Option::is_none) {
+        return Ok(vec![None; outcomes.len()]);
+    }
+    let mut beside = appraisal.clone();
+    for (choice, id) in beside.choices.iter_mut().zip(&wanted) {
+        if let Some(id) = id {
+            choice.basis.value.clone_from(id);
+        }
+    }
+    let (outcomes, _) = value(&beside, catalogue)?;
+    let make = |(outcome, id): (&ChoiceOutcome, Option<String>)| {
+        id.map(|id| Companion { id, words: outcome.basis.words(), totals: *outcome.totals() })
+    };
+    Ok(outcomes.iter().zip(wanted).map(make).collect())
+}
+
+fn meta(package: &Package, outcomes: &[ChoiceOutcome], request: &FillRequest) -> Meta {
+    let bases: String = outcomes.iter().map(|outcome| outcome.basis.canonical() + "\n").collect();
+    Meta {
+        input_name: package.file_name().to_owned(),
+        input_sha256: sha256(package.bytes()),
+        basis_sha256: sha256(bases.as_bytes()),
+        version: env!("CARGO_PKG_VERSION").to_owned(),
+        as_of: request.as_of.clone(),
+        by: request.by.clone(),
+        formulas: request.formulas,
+    }
+}
+
+fn sha256(bytes: &[u8]) -> String {
+    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
+}
+
+/// A patch knows the cell but not the sheet: the sheet's name is added here.
+fn in_sheet(error: WorkbookError, sheet: &str) -> WorkbookError {
+    let mut problems = error.problems().to_vec();
+    for problem in &mut problems {
+        if problem.place.range.is_some() {
+            problem.place.sheet = Some(sheet.to_owned());
+        }
+    }
+    problems.into()
+}
+
+/// What differs in the package by design, a sentence each, for the audit summary.
+fn differs() -> Vec<String> {
+    [
+        "Filled cells and hence's own sheets; every other cell is as it was.",
+        "The sheet list, the names hence_verdict, hence_own and hence_digest, and cell formats appended for the new sheets.",
+        "The list of content types and the workbook's relationships; the calculation chain is removed.",
+        "The workbook is marked to be calculated when it is opened.",
+        "Stored results of formulas that depend on filled cells are removed, so that nothing stale can be read.",
+    ]
+    .map(String::from)
+    .to_vec()
+}

@@ -1,0 +1,147 @@
+//! What a run found, for those who print it: one report a workbook, one entry an option.
+
+use hence_core::Payback;
+
+use crate::appraisal::{Appraisal, StreamKind};
+use crate::outcome::{ChoiceOutcome, Totals};
+use crate::problem::{Problem, Severity};
+
+/// How a run on one workbook ended.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, serde::Serialize)]
+#[serde(rename_all = "lowercase")]
+pub enum Status {
+    /// Nothing is wrong with it.
+    Done,
+    /// It was read (and filled), and something in it is wrong.
+    Problems,
+    /// It could not be read or filled; no output was left.
+    Failed,
+}
+
+/// The same option under the schedule that its body wants run beside the declared one.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Companion {
+    /// The schedule's id.
+    pub id: String,
+    /// In words, with its source.
+    pub words: String,
+    /// Totals under it (over the baseline where there is one).
+    pub totals: Totals,
+}
+
+/// What one option comes to.
+#[derive(Clone, Debug, PartialEq)]
+pub struct OptionReport {
+    /// Its name.
+    pub name: String,
+    /// It is the baseline.
+    pub baseline: bool,
+    /// The canonical basis.
+    pub basis: String,
+    /// The basis in words, with its source.
+    pub basis_words: String,
+    /// The base in words.
+    pub base: String,
+    /// The timing as a sentence with numbers.
+    pub timing: String,
+    /// As it stands.
+    pub absolute: Totals,
+    /// Over the baseline, where there is one.
+    pub increment: Option<Totals>,
+    /// Names of the streams above the line of the ratio.
+    pub above: Vec<String>,
+    /// Names of the streams below it.
+    pub below: Vec<String>,
+    /// N of the annual equivalent.
+    pub service_years: u32,
+    /// Every internal rate of return found.
+    pub irr: Vec<f64>,
+    /// Discounted payback.
+    pub payback: Payback,
+    /// PV-weighted mean time of the gross flows, years.
+    pub mean_time: Option<f64>,
+    /// Share of gross PV by era.
+    pub era_shares: Vec<f64>,
+    /// NPV per unit of the constrained cost.
+    pub npv_per_budget: Option<f64>,
+    /// Effects by name: cost per unit undiscounted, cost per unit discounted.
+    pub effects: Vec<(String, Option<f64>, Option<f64>)>,
+    /// The same under the companion schedule.
+    pub companion: Option<Companion>,
+}
+
+impl OptionReport {
+    /// The totals that rank, ratio and NPV use.
+    pub fn totals(&self) -> &Totals {
+        self.increment.as_ref().unwrap_or(&self.absolute)
+    }
+}
+
+/// The report on one workbook.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Report {
+    /// Its options.
+    pub options: Vec<OptionReport>,
+    /// Everything found.
+    pub problems: Vec<Problem>,
+    /// Cells written, and cells found filled and compared.
+    pub filled: usize,
+    /// Formula cells that agreed and were left.
+    pub ticked: usize,
+    /// The verdict as written to the audit summary.
+    pub verdict: String,
+}
+
+impl Report {
+    /// Done, unless a problem is an error.
+    pub fn status(&self) -> Status {
+        if self.problems.iter().any(|p| p.severity == Severity::Error) {
+            Status::Problems
+        } else {
+            Status::Done
+        }
+    }
+}
+
+/// One entry an option.
+pub(crate) fn option_reports(
+    appraisal: &Appraisal,
+    outcomes: &[ChoiceOutcome],
+    companions: &[Option<Companion>],
+) -> Vec<OptionReport> {
+    let names = |i: usize, wanted: &dyn Fn(StreamKind) -> bool| {
+        let streams = &appraisal.choices[i].streams;
+        streams.iter().filter(|s| wanted(s.kind)).map(|s| s.name.clone()).collect()
+    };
+    appraisal
+        .choices
+        .iter()
+        .zip(outcomes)
+        .enumerate()
+        .map(|(i, (choice, outcome))| OptionReport {
+            name: choice.name.clone(),
+            baseline: appraisal.baseline == Some(i),
+            basis: outcome.basis.canonical(),
+            basis_words: outcome.basis.words(),
+            base: outcome.base_words.clone(),
+            timing: outcome.timing_sentence.clone(),
+            absolute: outcome.absolute,
+            increment: outcome.increment,
+            above: names(i, &|kind| kind != StreamKind::Cost),
+            below: names(i, &|kind| kind == StreamKind::Cost),
+            service_years: outcome.service_years,
+            irr: outcome.irr.clone(),
+            payback: outcome.payback,
+            mean_time: outcome.mean_time,
+            era_shares: outcome.era_shares.clone(),
+            npv_per_budget: outcome.npv_per_budget,
+            effects: choice
+                .effects
+                .iter()
+                .zip(&outcome.effects)
+                .map(|(effect, (plain, discounted))| (effect.name.clone(), *plain, *discounted))
+                .collect(),
+            companion: companions.get(i).cloned().flatten(),
+        })
+        .collect()
+}

@@ -1,0 +1,288 @@
+//! Options put together: base, basis, timing, years, streams and targets of each.
+
+use std::collections::BTreeMap;
+
+use crate::appraisal::{Axis, Choice};
+use crate::problem::{Place, Problem};
+use crate::references::SheetRange;
+use crate::roles::{ROLES, Role, key};
+
+use super::find::Named;
+use super::groups::{Group, Split, names_of};
+use super::{Context, counted, settings, streams, targets, texts, years};
+
+/// The options, and what they share.
+pub(super) struct Built {
+    pub axes: Vec<Axis>,
+    pub choices: Vec<Choice>,
+    pub baseline: Option<usize>,
+}
+
+/// Builds every option; what cannot be built is reported.
+pub(super) fn build(context: &mut Context, split: &Split, told: Option<&str>) -> Built {
+    let mut built = Built { axes: Vec::new(), choices: Vec::new(), baseline: None };
+    report_missing(context, split, told);
+    let mut read: BTreeMap<SheetRange, Option<usize>> = BTreeMap::new();
+    for group in &split.groups {
+        let Some(years) = years_of(context, split, group) else { continue };
+        let axis = match read.get(&years.at) {
+            Some(axis) => *axis,
+            None => {
+                let axis = years::axis(context, years).map(|axis| {
+                    built.axes.push(axis);
+                    built.axes.len() - 1
+                });
+                read.insert(years.at.clone(), axis);
+                axis
+            }
+        };
+        let Some(index) = axis else { continue };
+        let axis = built.axes[index].clone();
+        if let Some(choice) = choice(context, split, group, &axis, index, told) {
+            built.choices.push(choice);
+        }
+    }
+    if built.choices.len() == split.groups.len() {
+        targets::add_shared(context, split, &mut built.choices, &built.axes);
+        check_settings(context, split, &built.choices);
+        built.baseline = baseline(context, split);
+    }
+    targets::check(context, &built.choices, &built.axes);
+    built
+}
+
+fn choice(
+    context: &mut Context,
+    split: &Split,
+    group: &Group,
+    axis: &Axis,
+    index: usize,
+    told: Option<&str>,
+) -> Option<Choice> {
+    let base = years::base(context, split.of(group, Role::Base), axis);
+    let basis = settings::basis(context, split.of(group, Role::Basis), told);
+    let timing = split.of(group, Role::Timing).and_then(|named| settings::timing(context, named));
+    let streams = streams::streams(context, split, group, axis);
+    let effects = streams::effects(context, split, group, axis);
+    let (base, basis) = (base?, basis?);
+    let mut choice = Choice {
+        name: group.name.clone(),
+        base,
+        basis,
+        timing,
+        axis: index,
+        streams,
+        effects,
+        budget: Vec::new(),
+        targets: Vec::new(),
+    };
+    choice.budget = budget(context, split, group, &choice);
+    choice.targets = targets::targets(context, &group.named, &choice, axis);
+    counted::check(context, &choice);
+    Some(choice)
+}
+
+/// The years or offsets of an option; both at once is a question.
+fn years_of<'s>(context: &mut Context, split: &'s Split, group: &'s Group) -> Option<&'s Named> {
+    let (years, offsets) = (split.of(group, Role::Years), split.of(group, Role::Offsets));
+    if let (Some(years), Some(offsets)) = (years, offsets) {
+        context.report(
+            Problem::error(
+                "years-and-offsets",
+                offsets.place(),
+                format!("offsets are given beside the years {} [{}]", years.at, years.from),
+            )
+            .hint("keep one of the two"),
+        );
+        return None;
+    }
+    years.or(offsets)
+}
+
+/// What the workbook does not say at all, in one problem with how to say it.
+fn report_missing(context: &mut Context, split: &Split, told: Option<&str>) {
+    let all = || split.groups.iter().flat_map(|group| &group.named).chain(&split.shared);
+    let has = |test: &dyn Fn(Role) -> bool| all().any(|named| test(named.name.role));
+    let streams = has(&Role::is_stream);
+    let mut lacks = Lacks::default();
+    lacks.add(has(&|role| matches!(role, Role::Years | Role::Offsets)), "years", "hence_years");
+    lacks.add(streams, "stream of flows", "hence_cost_works");
+    lacks.add(has(&|role| role == Role::Basis) || told.is_some(), "basis", "hence_basis");
+    lacks.add(has(&Role::is_output), "range to fill", "hence_npv");
+    if let Some(problem) = lacks.problem(Place::default(), "the workbook") {
+        context.report(problem);
+        return;
+    }
+    for group in &split.groups {
+        let place = || {
+            let first = group.named.first();
+            first.map_or_else(
+                || Place::name(&group.name),
+                |named| Place { sheet: Some(named.at.sheet.clone()), ..Place::name(&group.name) },
+            )
+        };
+        let shared_stream = split.shared.iter().any(|named| named.name.role.is_stream());
+        let mut lacks = Lacks::default();
+        let dated = split.of(group, Role::Years).is_some();
+        lacks.add(dated || split.of(group, Role::Offsets).is_some(), "years", "hence_years");
+        lacks.add(
+            shared_stream || group.named.iter().any(|named| named.name.role.is_stream()),
+            "stream of flows",
+            &format!("hence_cost_works__{}", key(&group.name).replace(' ', "_")),
+        );
+        lacks.add(split.of(group, Role::Basis).is_some() || told.is_some(), "basis", "hence_basis");
+        if let Some(problem) = lacks.problem(place(), &format!("the option `{}`", group.name)) {
+            context.report(problem);
+        }
+        if let Some(years) = split.of(group, Role::Years)
+            && split.of(group, Role::Base).is_none()
+            && needs_base(context, years)
+        {
+            context.report(
+                Problem::error(
+                    "missing-role",
+                    place(),
+                    format!("the option `{}` has no base year", group.name),
+                )
+                .hint("enter the year to which values are discounted in a cell, and name it hence_base"),
+            );
+        }
+    }
+}
+
+/// Years count from their own zero only where they are year numbers.
+fn needs_base(context: &mut Context, years: &Named) -> bool {
+    let first =
+        context.grid(&years.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()));
+    !matches!(first, Some(crate::reading::Value::Number(n)) if n < 1000.0)
+}
+
+/// Roles that are missing, and the names that would say them.
+#[derive(Default)]
+struct Lacks {
+    what: Vec<&'static str>,
+    names: Vec<String>,
+}
+
+impl Lacks {
+    fn add(&mut self, found: bool, what: &'static str, name: &str) {
+        if !found {
+            self.what.push(what);
+            self.names.push(name.to_owned());
+        }
+    }
+
+    fn problem(self, place: Place, whose: &str) -> Option<Problem> {
+        if self.what.is_empty() {
+            return None;
+        }
+        let role = self.names[0].trim_start_matches("hence_").split("__").next().unwrap_or_default();
+        Some(
+            Problem::error("missing-role", place, format!("{whose} has no {}", self.what.join(", no ")))
+                .hint(format!(
+                    "select the cells and type {} into the Name Box; or give them with --role, as --role \
+                 {role}=Sheet1!C3:L3; `hence start FILE` makes a ready-named workbook",
+                    self.names.join(", ")
+                )),
+        )
+    }
+}
+
+/// The streams that are the constrained cost, by the names they bear in this option.
+fn budget(context: &mut Context, split: &Split, group: &Group, choice: &Choice) -> Vec<String> {
+    let Some(named) = split.of(group, Role::Budget).cloned() else { return Vec::new() };
+    let shared = split.shared.contains(&named);
+    let mut streams = Vec::new();
+    for (text, cell) in texts::list(context, &named) {
+        match choice.streams.iter().find(|stream| key(&stream.name) == key(&text)) {
+            Some(stream) if !streams.contains(&stream.name) => streams.push(stream.name.clone()),
+            Some(_) => {}
+            // A list for all options may name streams that only some of them have.
+            None if shared && has_stream(split, &text) => {}
+            None => context.report(
+                Problem::error(
+                    "unknown-stream",
+                    counted::place(&named.at, cell, &named.from),
+                    format!("`{text}` is no stream of the option `{}`", choice.name),
+                )
+                .hint(format!("its streams are {}", stream_names(choice))),
+            ),
+        }
+    }
+    streams
+}
+
+fn has_stream(split: &Split, text: &str) -> bool {
+    split
+        .groups
+        .iter()
+        .flat_map(|group| &group.named)
+        .chain(&split.shared)
+        .any(|named| named.name.role.is_stream() && named.name.stream.as_deref().map(key) == Some(key(text)))
+}
+
+/// The names of an option's streams in one phrase.
+pub(super) fn stream_names(choice: &Choice) -> String {
+    let names: Vec<&str> = choice.streams.iter().map(|stream| stream.name.as_str()).collect();
+    if names.is_empty() { "none".to_owned() } else { names.join(", ") }
+}
+
+/// Units, uplifts and the like of streams that there are none of.
+fn check_settings(context: &mut Context, split: &Split, choices: &[Choice]) {
+    let setting =
+        |named: &&Named| matches!(named.name.role, Role::Unit | Role::Uplift | Role::Residual | Role::Tail);
+    let own =
+        split.groups.iter().zip(choices).map(|(group, choice)| (&group.named, std::slice::from_ref(choice)));
+    let all: Vec<_> = own.chain(std::iter::once((&split.shared, choices))).collect();
+    for (named, choices) in all {
+        for named in named.iter().filter(setting) {
+            let stream = named.name.stream.as_deref().unwrap_or_default();
+            let known =
+                choices.iter().flat_map(|choice| &choice.streams).any(|s| key(&s.name) == key(stream));
+            if !known {
+                context.report(
+                    Problem::error("unknown-stream", named.place(), format!("there is no stream `{stream}`"))
+                        .hint(format!(
+                            "the streams are {}",
+                            choices.first().map(stream_names).unwrap_or_default()
+                        )),
+                );
+            }
+        }
+    }
+    let common: Vec<&String> = split.common.iter().collect();
+    for stream in common {
+        let blocks = ROLES.iter().any(|info| info.role.is_stream() && key(info.word) == *stream);
+        let found =
+            split.shared.iter().any(|named| named.name.stream.as_deref().map(key).as_ref() == Some(stream));
+        if !found && !blocks {
+            let named = split.shared.iter().find(|named| named.name.role == Role::Shared);
+            let place = named.map_or_else(Place::default, Named::place);
+            context.report(
+                Problem::error("unknown-stream", place, format!("`{stream}` is no stream without an option"))
+                    .hint("list only streams that are named without an option"),
+            );
+        }
+    }
+}
+
+/// The option that the others are compared with.
+fn baseline(context: &mut Context, split: &Split) -> Option<usize> {
+    let named = split.shared.iter().find(|named| named.name.role == Role::Baseline);
+    let own =
+        split.groups.iter().flat_map(|group| &group.named).find(|named| named.name.role == Role::Baseline);
+    let named = named.or(own)?;
+    let text = texts::text(context, named)?;
+    let found = split.groups.iter().position(|group| key(&group.name) == key(&text));
+    if found.is_none() {
+        context.report(
+            Problem::error(
+                "unknown-option",
+                named.place(),
+                format!("`{text}` is no option of this workbook"),
+            )
+            .hint(format!("the options are {}", names_of(&split.groups))),
+        );
+    }
+    found
+}

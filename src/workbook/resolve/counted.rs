@@ -1,0 +1,203 @@
+//! Nothing counts twice: overlapping names, and a stream named beside its own total.
+
+use std::collections::BTreeSet;
+
+use crate::appraisal::{Choice, Direction};
+use crate::problem::{Place, Problem};
+use crate::references::{Cell, SheetRange, Token, tokens};
+
+use super::Context;
+use super::cells::one;
+use super::years::direction;
+
+/// How far sums of sums are followed.
+const DEPTH: usize = 4;
+/// A sum over more cells than this is not followed, nor are more ranges of one stream.
+const FOLLOWED: usize = 400;
+
+/// The cells that a formula adds up (or subtracts), where it does nothing else.
+///
+/// `SUM(B5:B7)`, `B5+B7`, `SUBTOTAL(9,B5:B7)`; nothing for `B5*1.1`, which is a flow of its own.
+pub(crate) fn sum_of(formula: &str, sheet: &str) -> Option<Vec<SheetRange>> {
+    let mut parts = Vec::new();
+    let mut code = false; // the next number is the function code of SUBTOTAL
+    for spanned in tokens(formula) {
+        match spanned.token {
+            Token::Ref(reference) => {
+                let on = match &reference.sheet {
+                    None => sheet.to_owned(),
+                    Some(sheets) if sheets.is_external() || sheets.last.is_some() => return None,
+                    Some(sheets) => sheets.first.clone().into_owned(),
+                };
+                parts.push(SheetRange { sheet: on, range: reference.range() });
+            }
+            Token::Function(name) if name.eq_ignore_ascii_case("SUM") => {}
+            Token::Function(name) if name.eq_ignore_ascii_case("SUBTOTAL") => code = true,
+            Token::Number("9" | "109") if code => code = false,
+            Token::Operator("(" | ")" | "+" | "-" | ",") | Token::Space => {}
+            _ => return None,
+        }
+    }
+    (!parts.is_empty()).then_some(parts)
+}
+
+/// Reports streams of an option that share cells or hold one another's sums.
+pub(super) fn check(context: &mut Context, choice: &Choice) {
+    for (i, stream) in choice.streams.iter().enumerate() {
+        for other in &choice.streams[..i] {
+            if overlap(&stream.at, &other.at) {
+                context.report(
+                    Problem::error(
+                        "overlap",
+                        Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
+                        format!(
+                            "shares cells with {} [{}], whose flows would count twice",
+                            other.at, other.from
+                        ),
+                    )
+                    .hint("give each stream its own cells"),
+                );
+            }
+        }
+    }
+    let ranges: Vec<&SheetRange> = choice.streams.iter().map(|stream| &stream.at).collect();
+    let reached = reached(context, &ranges);
+    for (stream, reached) in choice.streams.iter().zip(&reached) {
+        for other in choice.streams.iter().filter(|other| other.at != stream.at) {
+            let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+            let through =
+                reached.iter().filter(|(at, _)| overlap(at, &other.at)).map(|(_, adds)| *adds).max();
+            match through {
+                Some(true) => context.report(
+                    Problem::error(
+                        "double-count",
+                        place,
+                        format!(
+                            "is a total that holds {} [{}], whose flows would count twice",
+                            other.at, other.from
+                        ),
+                    )
+                    .hint("name the total or its parts, not both"),
+                ),
+                Some(false) => context.report(
+                    Problem::warning(
+                        "linked-streams",
+                        place,
+                        format!("only repeats {} [{}]", other.at, other.from),
+                    )
+                    .hint("check that the same flows are meant on both sides; else name one of the two"),
+                ),
+                None => {}
+            }
+        }
+    }
+}
+
+/// A formula under way: which range it belongs to, its sheet and text, and whether anything was added so far.
+type Step = (usize, String, String, bool);
+
+/// What the cells of each range add up, directly or through other sums: true where a sum stands between, false
+/// for a plain link.
+///
+/// The first cell of a range that holds a formula stands for all of them, as rows are filled to the side.
+/// All ranges are followed together, so that each depth reads each sheet once.
+fn reached(context: &mut Context, ranges: &[&SheetRange]) -> Vec<BTreeSet<(SheetRange, bool)>> {
+    let mut reached = vec![BTreeSet::new(); ranges.len()];
+    let mut steps: Vec<Step> = Vec::new();
+    for (i, range) in ranges.iter().enumerate() {
+        let formulas = formulas(context, range);
+        steps.extend(formulas.into_iter().take(1).map(|text| (i, range.sheet.clone(), text, false)));
+    }
+    for _ in 0..DEPTH {
+        let mut next: Vec<(usize, SheetRange, bool)> = Vec::new();
+        for (i, sheet, text, added) in steps.drain(..) {
+            let parts = sum_of(&text, &sheet).unwrap_or_default();
+            let adds = added || parts.len() > 1 || parts.iter().any(|part| part.range.len() > 1);
+            for part in parts {
+                let new = reached[i].len() < FOLLOWED && reached[i].insert((part.clone(), adds));
+                if new && part.range.len() <= FOLLOWED as u64 && known(context, &part) {
+                    next.push((i, part, adds));
+                }
+            }
+        }
+        let wanted: Vec<SheetRange> = next.iter().map(|(_, part, _)| part.clone()).collect();
+        // What is wrong with cells that only lie between is no matter of the appraisal.
+        if wanted.is_empty() || context.sheets.load(&wanted).is_err() {
+            break;
+        }
+        for (i, part, adds) in next {
+            let formulas = formulas(context, &part);
+            steps.extend(formulas.into_iter().map(|text| (i, part.sheet.clone(), text, adds)));
+        }
+    }
+    reached
+}
+
+/// The formulas of a range, in order.
+fn formulas(context: &mut Context, at: &SheetRange) -> Vec<String> {
+    let grid = context.sheets.range(at).ok();
+    grid.iter().flat_map(|grid| grid.iter()).filter_map(|(_, cell)| cell.formula.clone()).collect()
+}
+
+/// Whether the sheet exists; a formula may name one that was deleted.
+fn known(context: &Context, at: &SheetRange) -> bool {
+    context.book.sheets.iter().any(|sheet| sheet.name == at.sheet)
+}
+
+/// Whether two ranges share a cell.
+pub(super) fn overlap(a: &SheetRange, b: &SheetRange) -> bool {
+    a.sheet == b.sheet && a.range.intersects(&b.range)
+}
+
+/// Whether a range on the sheet of the years runs beside them, cell for cell.
+pub(super) fn aligned(at: &SheetRange, years: &SheetRange) -> bool {
+    match direction(years) {
+        Some(Direction::Across) => {
+            at.range.first.col == years.range.first.col && at.range.last.col == years.range.last.col
+        }
+        Some(Direction::Down) => {
+            at.range.first.row == years.range.first.row && at.range.last.row == years.range.last.row
+        }
+        None => false,
+    }
+}
+
+/// Reports a stream or target whose cells stand under other years than their own.
+pub(super) fn check_aligned(context: &mut Context, at: &SheetRange, from: &str, years: &SheetRange) {
+    if at.sheet == years.sheet && at.range.len() == years.range.len() && !aligned(at, years) {
+        context.report(
+            Problem::warning(
+                "misaligned",
+                Place::cells(&at.sheet, at.range).called(from),
+                format!(
+                    "stands beside other cells than the years {}: its first cell is taken for the first year",
+                    years.range
+                ),
+            )
+            .hint("check that the name begins at the first year"),
+        );
+    }
+}
+
+/// The place of a cell of a range, with its name.
+pub(super) fn place(at: &SheetRange, cell: Cell, from: &str) -> Place {
+    Place::cells(&at.sheet, one(cell)).called(from)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn sums_and_what_is_none() {
+        let parts = |text: &str| {
+            sum_of(text, "Costs").map(|parts| parts.iter().map(ToString::to_string).collect::<Vec<_>>())
+        };
+        assert_eq!(parts("SUM(B5:B7)"), Some(vec!["Costs!B5:B7".to_owned()]));
+        assert_eq!(parts("+B5-Other!$B$6"), Some(vec!["Costs!B5".to_owned(), "Other!B6".to_owned()]));
+        assert_eq!(parts("SUBTOTAL(9,B5:B7)"), Some(vec!["Costs!B5:B7".to_owned()]));
+        for text in ["B5*1.1", "B5+9", "MAX(B5:B7)", "1", "SUM(B5:B7)/2", "[1]Sheet1!B5+B6"] {
+            assert_eq!(parts(text), None, "{text}");
+        }
+    }
+}

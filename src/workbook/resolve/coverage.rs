@@ -1,0 +1,213 @@
+//! Coverage: every numeric row that runs along the years, and whether it was valued.
+
+use std::collections::BTreeMap;
+
+use hence_core::sum;
+
+use crate::appraisal::{Choice, Covered, Direction, StreamKind, TargetRole};
+use crate::problem::Place;
+use crate::reading::Value;
+use crate::references::{Cell, Range, SheetRange};
+
+use super::choices::Built;
+use super::counted::aligned;
+use super::{Context, note};
+
+/// Rows that are listed, at most; a sheet of data can hold a million.
+const MAX_ROWS_LISTED: usize = 5_000;
+/// Rows of one sheet that are looked at, at most.
+const MAX_ROWS_SEEN: usize = 100_000;
+
+/// A stretch of columns (or rows) of a sheet that years stand over.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
+struct Band {
+    /// The first column, or row where the years run down.
+    first: u32,
+    /// The last one.
+    last: u32,
+    /// The years run down.
+    down: bool,
+    /// The row (or column) of the years, on their own sheet.
+    years: Option<u32>,
+}
+
+/// What was seen of one row.
+#[derive(Default)]
+struct Line {
+    heading: String,
+    heading_is_word: bool,
+    numbers: Vec<f64>,
+}
+
+/// Every numeric row along the years of every option, in sheet order.
+pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
+    let roles = roles(built);
+    let mut covered = Vec::new();
+    let order: Vec<String> = context.book.sheets.iter().map(|sheet| sheet.name.clone()).collect();
+    let bands = bands(built);
+    for sheet in order {
+        let Some(bands) = bands.get(&sheet) else { continue };
+        for band in bands {
+            let lines = match lines(context, &sheet, *band) {
+                Ok(lines) => lines,
+                Err(error) => {
+                    context.problems.extend(error.problems().iter().cloned());
+                    continue;
+                }
+            };
+            covered.extend(lines.into_iter().filter_map(|(index, line)| {
+                let at = SheetRange { sheet: sheet.clone(), range: band.line(index) };
+                let roles = roles.get(&at).cloned().unwrap_or_default();
+                let after_years = band.years.is_none_or(|years| index > years);
+                let wanted = !roles.is_empty() || line.numbers.len() > usize::from(!after_years);
+                (wanted && Some(index) != band.years).then(|| Covered {
+                    at,
+                    heading: line.heading,
+                    roles,
+                    total: sum(&line.numbers),
+                })
+            }));
+        }
+    }
+    if covered.len() > MAX_ROWS_LISTED {
+        context.report(note(
+            "coverage-cut",
+            Place::default(),
+            format!(
+                "{} numeric rows run along the years; the first {MAX_ROWS_LISTED} are listed",
+                covered.len()
+            ),
+        ));
+        covered.truncate(MAX_ROWS_LISTED);
+    }
+    covered
+}
+
+impl Band {
+    /// The cells of one row of the band.
+    fn line(self, index: u32) -> Range {
+        let (first, last) = (self.first, self.last);
+        if self.down {
+            Range { first: Cell { row: first, col: index }, last: Cell { row: last, col: index } }
+        } else {
+            Range { first: Cell { row: index, col: first }, last: Cell { row: index, col: last } }
+        }
+    }
+
+    /// A cell as (row along the years, position across it).
+    fn turned(self, cell: Cell) -> (u32, u32) {
+        if self.down { (cell.col, cell.row) } else { (cell.row, cell.col) }
+    }
+}
+
+/// Where years run: on their own sheets, and on the sheets of streams that stand elsewhere.
+fn bands(built: &Built) -> BTreeMap<String, Vec<Band>> {
+    let mut bands: BTreeMap<String, Vec<Band>> = BTreeMap::new();
+    let band = |at: &SheetRange, direction: Direction, years: bool| {
+        let Range { first, last } = at.range;
+        match direction {
+            Direction::Across => {
+                Band { first: first.col, last: last.col, down: false, years: years.then_some(first.row) }
+            }
+            Direction::Down => {
+                Band { first: first.row, last: last.row, down: true, years: years.then_some(first.col) }
+            }
+        }
+    };
+    for axis in &built.axes {
+        let own = bands.entry(axis.at.sheet.clone()).or_default();
+        own.push(band(&axis.at, axis.direction, true));
+    }
+    for choice in &built.choices {
+        let axis = &built.axes[choice.axis];
+        for stream in &choice.streams {
+            if stream.at.sheet == axis.at.sheet && aligned(&stream.at, &axis.at) {
+                continue;
+            }
+            let found = band(&stream.at, axis.direction, false);
+            let known = bands.entry(stream.at.sheet.clone()).or_default();
+            let same = |b: &Band| (b.first, b.last, b.down) == (found.first, found.last, found.down);
+            if !known.iter().any(same) {
+                known.push(found);
+            }
+        }
+    }
+    for list in bands.values_mut() {
+        list.sort_unstable();
+        list.dedup_by_key(|b| (b.first, b.last, b.down));
+    }
+    bands
+}
+
+/// Streams the sheet once and sums each row of the band.
+fn lines(context: &mut Context, sheet: &str, band: Band) -> crate::problem::Result<BTreeMap<u32, Line>> {
+    let mut lines: BTreeMap<u32, Line> = BTreeMap::new();
+    context.sheets.visit(sheet, |cell, value| {
+        let (index, across) = band.turned(cell);
+        if lines.len() >= MAX_ROWS_SEEN && !lines.contains_key(&index) {
+            return;
+        }
+        match value {
+            Value::Number(number) if number.is_finite() && (band.first..=band.last).contains(&across) => {
+                let line = lines.entry(index).or_default();
+                line.numbers.push(number);
+            }
+            Value::Text(text) if across < band.first => {
+                let line = lines.entry(index).or_default();
+                // The nearest text that reads like a word; units and marks only where there is no other.
+                let is_word = text.chars().filter(|c| c.is_alphabetic()).count() >= 3;
+                if is_word || !line.heading_is_word {
+                    line.heading = text.split_whitespace().collect::<Vec<_>>().join(" ");
+                    line.heading_is_word = is_word;
+                }
+            }
+            _ => {}
+        }
+    })?;
+    lines.retain(|_, line| !line.numbers.is_empty());
+    Ok(lines)
+}
+
+/// The roles of every named row in words; with several options, each with its option.
+fn roles(built: &Built) -> BTreeMap<SheetRange, Vec<String>> {
+    let mut roles: BTreeMap<SheetRange, Vec<String>> = BTreeMap::new();
+    let many = built.choices.len() > 1;
+    for choice in &built.choices {
+        let mut add = |at: &SheetRange, words: String| {
+            let list = roles.entry(at.clone()).or_default();
+            let words = if many { format!("{words} ({})", choice.name) } else { words };
+            if !list.contains(&words) {
+                list.push(words);
+            }
+        };
+        for (at, words) in words(choice) {
+            add(at, words);
+        }
+    }
+    roles
+}
+
+fn words(choice: &Choice) -> Vec<(&SheetRange, String)> {
+    let mut words = Vec::new();
+    for stream in &choice.streams {
+        let kind = match stream.kind {
+            StreamKind::Cost => "cost",
+            StreamKind::Benefit => "benefit",
+            StreamKind::Flow => "flow",
+            StreamKind::Damage => "damage",
+        };
+        words.push((&stream.at, format!("{kind}: {}", stream.name)));
+    }
+    words.extend(choice.effects.iter().map(|effect| (&effect.at, format!("effect: {}", effect.name))));
+    for target in &choice.targets {
+        let role = match &target.role {
+            TargetRole::Factor => "factor".to_owned(),
+            TargetRole::Rates => "rates".to_owned(),
+            TargetRole::PvByYear(None) => "pv".to_owned(),
+            TargetRole::PvByYear(Some(stream)) => format!("pv: {stream}"),
+            _ => continue,
+        };
+        words.push((&target.at, role));
+    }
+    words
+}

@@ -1,0 +1,244 @@
+//! From names and `--role` to ranges: what each role refers to, and why some names cannot be used.
+
+use crate::model::DefinedName;
+use crate::problem::{Place, Problem};
+use crate::reading::MAX_CELLS;
+use crate::references::{MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange};
+use crate::roles::{self, Role, RoleName, Status, Way};
+
+use super::{Checked, Context};
+
+/// A role with its cells.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) struct Named {
+    /// The role, stream and option as the name states them.
+    pub name: RoleName,
+    /// The defined name as written, or `--role cost_works`.
+    pub from: String,
+    /// Its cells.
+    pub at: SheetRange,
+    /// The sheet that the name is scoped to.
+    pub scope: Option<String>,
+}
+
+impl Named {
+    /// Its cells, with the name in brackets.
+    pub(super) fn place(&self) -> Place {
+        Place::cells(&self.at.sheet, self.at.range).called(&self.from)
+    }
+
+    /// More cells than are read as one range.
+    pub(super) fn too_large(&self) -> bool {
+        self.at.range.len() > MAX_CELLS
+    }
+}
+
+/// Every role of the workbook, those of the command line first.
+pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Named> {
+    let mut found = Vec::new();
+    for (role, range) in given {
+        match from_command_line(context, role, range) {
+            Ok(named) => found.push(named),
+            Err(problem) => context.report(*problem),
+        }
+    }
+    let book = context.book;
+    for defined in &book.names {
+        let Some(parsed) = roles::parse_name(&defined.name) else { continue };
+        let place = Place::name(&defined.name);
+        let name = match parsed {
+            Ok(name) => name,
+            Err(slip) => {
+                context.report(unknown_name(place, &slip));
+                continue;
+            }
+        };
+        if name.role.info().way == Way::Own || beaten(&found, &name, given.len()) {
+            continue;
+        }
+        if let Some(problem) = later(&name, place.clone()) {
+            context.report(problem);
+            continue;
+        }
+        match cells(context, defined) {
+            Ok(at) => {
+                found.push(Named { name, from: defined.name.clone(), at, scope: scope(context, defined) })
+            }
+            Err(problem) => context.report(*problem),
+        }
+    }
+    let mut kept = Vec::new();
+    for mut named in found {
+        shrink_to_merged(context, &mut named);
+        match whole(&named) {
+            Some(problem) => context.report(problem),
+            None => kept.push(named),
+        }
+    }
+    // Programs write names in orders of their own; that of the cells is the analyst's.
+    kept.sort_by_cached_key(|named| {
+        (context.book.sheet_index(&named.at.sheet), named.at.range, named.name.role, named.from.clone())
+    });
+    kept
+}
+
+/// A name that looks like a slip.
+pub(super) fn unknown_name(place: Place, slip: &str) -> Problem {
+    Problem::warning("unknown-name", place, slip).hint("correct the name, or delete it in the name manager")
+}
+
+/// Why a role is not read by this version.
+pub(super) fn later(name: &RoleName, place: Place) -> Option<Problem> {
+    let reason = match name.role.info().status {
+        Status::Supported => return None,
+        Status::SupportedAlone(_) if name.stream.is_none() => return None,
+        Status::SupportedAlone(reason) | Status::Later(reason) => reason,
+    };
+    let (why, what) = reason.split_once(": ").unwrap_or((reason, "leave this name out"));
+    Some(
+        Problem::error("unsupported-role", place, format!("`{}` is not supported: {why}", name.words()))
+            .hint(what),
+    )
+}
+
+/// The sheet a name is scoped to.
+pub(super) fn scope(context: &Context, defined: &DefinedName) -> Option<String> {
+    defined.scope.and_then(|index| context.book.sheets.get(index)).map(|sheet| sheet.name.clone())
+}
+
+/// Whether one of the first `count` (from the command line) has the same role, stream and option.
+fn beaten(found: &[Named], name: &RoleName, count: usize) -> bool {
+    let same =
+        |a: &Option<String>, b: &Option<String>| a.as_deref().map(roles::key) == b.as_deref().map(roles::key);
+    found.iter().take(count).filter(|named| named.from.starts_with("--role")).any(|named| {
+        named.name.role == name.role
+            && same(&named.name.stream, &name.stream)
+            && (named.name.option.is_none() || same(&named.name.option, &name.option))
+    })
+}
+
+fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Named> {
+    let from = format!("--role {role}");
+    let place = Place::name(&from);
+    let name = roles::parse_role(role).map_err(|slip| {
+        Problem::error("unknown-role", place.clone(), slip).hint("`hence names --help` lists the roles")
+    })?;
+    if name.role.info().way == Way::Own {
+        return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given").into());
+    }
+    if let Some(problem) = later(&name, place.clone()) {
+        return Err(problem.into());
+    }
+    if let Ok(at) = range.parse::<SheetRange>()
+        && let Some(sheet) = context.book.sheets.iter().find(|sheet| same_text(&sheet.name, &at.sheet))
+    {
+        return Ok(Named { name, from, at: SheetRange { sheet: sheet.name.clone(), ..at }, scope: None });
+    }
+    let (sheet, wanted) = match range.rsplit_once('!') {
+        Some((sheet, wanted)) => (Some(sheet.trim_matches('\'').replace("''", "'")), wanted),
+        None => (None, range),
+    };
+    let defined = context.book.names.iter().find(|defined| {
+        same_text(&defined.name, wanted)
+            && match (&sheet, scope(context, defined)) {
+                (Some(sheet), Some(scope)) => same_text(sheet, &scope),
+                (None, None) => true,
+                _ => false,
+            }
+    });
+    let Some(defined) = defined else {
+        return Err(Problem::error(
+            "role-range",
+            place,
+            format!("`{range}` is neither cells of this workbook nor one of its names"),
+        )
+        .hint("write the cells as Sheet1!C7:F7, or 'My sheet'!C7:F7")
+        .into());
+    };
+    Ok(Named { name, from, at: cells(context, defined)?, scope: None })
+}
+
+fn same_text(a: &str, b: &str) -> bool {
+    a.to_lowercase() == b.to_lowercase()
+}
+
+/// The one rectangle a name refers to, or why it has none.
+pub(super) fn cells(context: &Context, defined: &DefinedName) -> Checked<SheetRange> {
+    let refuse = |code, message: String, hint: &str| {
+        Err(Problem::error(code, Place::name(&defined.name), message).hint(hint).into())
+    };
+    let again = "let the name refer to one range of cells with $ signs, such as Sheet1!$C$7:$F$7";
+    match context.book.resolve(defined) {
+        NameTarget::Cells(at) => Ok(at),
+        NameTarget::Union(parts) => refuse(
+            "name-union",
+            format!("refers to {} separate ranges, which are not joined", parts.len()),
+            "name one range; give each part its own stream, or put the cells side by side",
+        ),
+        NameTarget::Constant(constant) => refuse(
+            "name-constant",
+            format!("is the constant {constant:?}, and cells are needed"),
+            "enter it in a cell and let the name refer to that cell",
+        ),
+        NameTarget::Formula(text) => refuse(
+            "name-dynamic",
+            format!("is the formula `{}`, whose cells may change", super::cells::shown(&text)),
+            again,
+        ),
+        NameTarget::Relative => {
+            refuse("name-relative", "refers to other cells from every cell that uses it".to_owned(), again)
+        }
+        NameTarget::RefError => {
+            refuse("name-lost", "refers to cells that were deleted (#REF!)".to_owned(), again)
+        }
+        NameTarget::External(text) => refuse(
+            "name-external",
+            format!("refers to another workbook, `{}`", super::cells::shown(&text)),
+            "bring the cells into this workbook and name them here",
+        ),
+        NameTarget::MissingSheet(sheet) => refuse(
+            "name-missing-sheet",
+            format!("refers to the sheet `{sheet}`, which does not exist"),
+            again,
+        ),
+        NameTarget::Table { table, .. } => refuse(
+            "name-table",
+            format!("refers to part of the table `{table}`, which is not read yet"),
+            again,
+        ),
+        NameTarget::ThreeD => refuse("name-sheets", "refers to several sheets at once".to_owned(), again),
+    }
+}
+
+/// A name on exactly one merged area means its upper left cell, the only one that holds anything.
+fn shrink_to_merged(context: &mut Context, named: &mut Named) {
+    let several = matches!(named.name.role, Role::Budget | Role::Shared | Role::Costs | Role::Benefits);
+    if several || named.at.range.is_single() {
+        return;
+    }
+    if context.facts(&named.at.sheet).is_some_and(|facts| facts.merged.contains(&named.at.range)) {
+        named.at.range.last = named.at.range.first;
+    }
+}
+
+/// Whole rows and columns reach past the appraisal, and so do ranges of millions of cells.
+fn whole(named: &Named) -> Option<Problem> {
+    let Range { first, last } = named.at.range;
+    let whole_row = first.col == 0 && last.col + 1 == MAX_COLUMNS;
+    let whole_column = first.row == 0 && last.row + 1 == MAX_ROWS;
+    if whole_row || whole_column {
+        let what = if whole_row { "row" } else { "column" };
+        return Some(
+            Problem::error("whole-range", named.place(), format!("covers a whole {what}, headings too"))
+                .hint("name only the cells from the first year to the last"),
+        );
+    }
+    named.too_large().then(|| {
+        Problem::error(
+            "range-too-large",
+            named.place(),
+            format!("the range has {} cells, allowed {MAX_CELLS}", named.at.range.len()),
+        )
+        .hint("name only the cells that hold the appraisal")
+    })
+}

@@ -1,0 +1,171 @@
+//! Which names belong to which option, and which are shared by all of them.
+
+use std::collections::{BTreeMap, BTreeSet};
+
+use crate::problem::Problem;
+use crate::references::Cell;
+use crate::roles::{Role, key};
+
+use super::find::Named;
+use super::{Context, texts};
+
+/// The names of one option.
+pub(super) struct Group {
+    /// Its name as shown.
+    pub name: String,
+    /// What belongs to it alone.
+    pub named: Vec<Named>,
+}
+
+/// All names of a workbook by option.
+pub(super) struct Split {
+    /// The options in order.
+    pub groups: Vec<Group>,
+    /// What has no option.
+    pub shared: Vec<Named>,
+    /// The keys of the streams that all options share, from the role `shared`.
+    pub common: BTreeSet<String>,
+}
+
+impl Split {
+    /// The one name of a role for an option: its own, else the shared one.
+    pub(super) fn of<'s>(&'s self, group: &'s Group, role: Role) -> Option<&'s Named> {
+        let plain = |named: &&Named| named.name.role == role && named.name.stream.is_none();
+        group.named.iter().find(plain).or_else(|| self.shared.iter().find(plain))
+    }
+
+    /// The name of a role about a stream for an option: its own, else the shared one.
+    pub(super) fn about<'s>(&'s self, group: &'s Group, role: Role, stream: &str) -> Option<&'s Named> {
+        let fits = |named: &&Named| {
+            named.name.role == role && named.name.stream.as_deref().map(key) == Some(key(stream))
+        };
+        group.named.iter().find(fits).or_else(|| self.shared.iter().find(fits))
+    }
+}
+
+/// Splits the names of a workbook by option.
+pub(super) fn split(context: &mut Context, named: Vec<Named>) -> Split {
+    let sheets = option_sheets(&named);
+    let mut groups: BTreeMap<String, Group> = BTreeMap::new();
+    let mut shared: Vec<Named> = Vec::new();
+    for named in named {
+        let from_sheet = named.scope.clone().filter(|sheet| sheets.contains(sheet));
+        match named.name.option.clone().or(from_sheet) {
+            Some(option) => {
+                let group = groups
+                    .entry(key(&option))
+                    .or_insert_with(|| Group { name: option.clone(), named: vec![] });
+                add(context, &mut group.named, named);
+            }
+            None => add(context, &mut shared, named),
+        }
+    }
+    let mut groups: Vec<Group> = groups.into_values().collect();
+    for group in &mut groups {
+        name_after_sheet(context, group);
+    }
+    groups.sort_by_key(|group| first_cell(context, &group.named));
+    let common = shared
+        .iter()
+        .find(|named| named.name.role == Role::Shared)
+        .cloned()
+        .map(|named| texts::list(context, &named).into_iter().map(|(text, _)| key(&text)).collect())
+        .unwrap_or_default();
+    if groups.is_empty() {
+        let name = only_name(context, &shared);
+        groups.push(Group { name, named: std::mem::take(&mut shared) });
+    } else {
+        refuse_loose(context, &shared, &common, &groups);
+    }
+    Split { groups, shared, common }
+}
+
+/// The sheets whose own names hold both a stream and an output.
+fn option_sheets(named: &[Named]) -> BTreeSet<String> {
+    let of = |test: fn(Role) -> bool| -> BTreeSet<&String> {
+        let own = named.iter().filter(|named| named.name.option.is_none() && test(named.name.role));
+        own.filter_map(|named| named.scope.as_ref()).collect()
+    };
+    of(Role::is_stream).intersection(&of(Role::is_output)).map(|sheet| (*sheet).clone()).collect()
+}
+
+/// Adds a name, unless another has the same role and stream: two ranges for one role are a question.
+fn add(context: &mut Context, list: &mut Vec<Named>, named: Named) {
+    let twin = list.iter().find(|other| {
+        other.name.role == named.name.role
+            && other.name.stream.as_deref().map(key) == named.name.stream.as_deref().map(key)
+    });
+    match twin {
+        None => list.push(named),
+        Some(twin) if twin.at == named.at => {}
+        Some(twin) => {
+            let problem = Problem::error(
+                "duplicate-role",
+                named.place(),
+                format!("`{}` is also {} [{}]", named.name.words(), twin.at, twin.from),
+            )
+            .hint(
+                "keep one of the two names, or give each its option: two underscores and the option's name",
+            );
+            context.report(problem);
+        }
+    }
+}
+
+/// An option named by suffix that is also a sheet shows the sheet's spelling.
+fn name_after_sheet(context: &Context, group: &mut Group) {
+    if let Some(sheet) = context.book.sheets.iter().find(|sheet| key(&sheet.name) == key(&group.name)) {
+        group.name = sheet.name.clone();
+    }
+}
+
+/// Options come in the order of their sheets, then of their cells.
+fn first_cell(context: &Context, named: &[Named]) -> Option<(usize, Cell)> {
+    let first = |streams: bool| {
+        let wanted = named.iter().filter(|named| !streams || named.name.role.is_stream());
+        wanted
+            .filter_map(|named| Some((context.book.sheet_index(&named.at.sheet)?, named.at.range.first)))
+            .min()
+    };
+    first(true).or_else(|| first(false))
+}
+
+/// Without options, the one there is bears the name of the sheet its streams stand on.
+fn only_name(context: &Context, shared: &[Named]) -> String {
+    let first = |streams: bool| {
+        let wanted = shared.iter().filter(|named| !streams || named.name.role.is_stream());
+        wanted.filter_map(|named| Some((context.book.sheet_index(&named.at.sheet)?, &named.at))).min()
+    };
+    let any = first(true).or_else(|| first(false)).map(|(_, at)| at.sheet.clone());
+    any.or_else(|| context.book.sheets.first().map(|sheet| sheet.name.clone())).unwrap_or_default()
+}
+
+/// Beside options, a stream without one is a question unless the workbook lists it as shared.
+fn refuse_loose(context: &mut Context, shared: &[Named], common: &BTreeSet<String>, groups: &[Group]) {
+    let example = groups.first().map(|group| group.name.replace(' ', "_").to_lowercase()).unwrap_or_default();
+    for named in shared {
+        let role = named.name.role;
+        if !role.is_stream() && role != Role::Effect {
+            continue;
+        }
+        let listed = named.name.stream.as_deref().unwrap_or(role.word());
+        if !common.contains(&key(listed)) {
+            context.report(
+                Problem::error(
+                    "loose-stream",
+                    named.place(),
+                    format!("has no option, and the workbook has options ({})", names_of(groups)),
+                )
+                .hint(format!(
+                    "name it {}__{example}, or list `{listed}` in cells named hence_shared",
+                    named.name
+                )),
+            );
+        }
+    }
+}
+
+/// The names of the options in one phrase.
+pub(super) fn names_of(groups: &[Group]) -> String {
+    groups.iter().map(|group| group.name.as_str()).collect::<Vec<_>>().join(", ")
+}

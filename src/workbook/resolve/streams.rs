@@ -1,0 +1,212 @@
+//! Streams of flows and physical effects, with what is said of each.
+
+use std::collections::BTreeMap;
+
+use crate::appraisal::{Axis, Direction, Effect, Given, Stream, StreamKind};
+use crate::problem::Problem;
+use crate::references::{Cell, SheetRange};
+use crate::roles::{Role, key};
+
+use super::cells::numbers;
+use super::counted::{check_aligned, place};
+use super::find::Named;
+use super::groups::{Group, Split};
+use super::settings::{self, Signs};
+use super::years::direction;
+use super::{Context, blocks, note};
+
+/// The streams of an option, its own first, then the shared ones.
+pub(super) fn streams(context: &mut Context, split: &Split, group: &Group, axis: &Axis) -> Vec<Stream> {
+    let signs =
+        split.of(group, Role::Signs).and_then(|named| settings::signs(context, named)).unwrap_or_default();
+    let mut streams = Vec::new();
+    for named in own_and_common(split, group, Role::is_stream) {
+        match named.name.role {
+            Role::Costs | Role::Benefits => streams.extend(blocks::streams(context, named, axis)),
+            role => {
+                let kind = match role {
+                    Role::Cost => StreamKind::Cost,
+                    Role::Benefit => StreamKind::Benefit,
+                    Role::Damage => StreamKind::Damage,
+                    _ => StreamKind::Flow,
+                };
+                let Some(raw) = row(context, named, axis) else { continue };
+                streams.push(Stream {
+                    name: named.name.stream.clone().unwrap_or_default(),
+                    kind,
+                    from: named.from.clone(),
+                    at: named.at.clone(),
+                    raw,
+                    sign: 1.0,
+                    unit: 1.0,
+                    uplift: Given { value: 0.0, at: None, from: "default".to_owned() },
+                    residual: None,
+                    tail: None,
+                });
+            }
+        }
+    }
+    for stream in &mut streams {
+        stream.sign = signs.of(stream.kind);
+        check_sign(context, stream, signs);
+        add_settings(context, split, group, stream);
+    }
+    check_names(context, &streams);
+    streams
+}
+
+/// The physical effects of an option.
+pub(super) fn effects(context: &mut Context, split: &Split, group: &Group, axis: &Axis) -> Vec<Effect> {
+    let mut effects = Vec::new();
+    for named in own_and_common(split, group, |role| role == Role::Effect) {
+        if let Some(raw) = row(context, named, axis) {
+            let name = named.name.stream.clone().unwrap_or_default();
+            effects.push(Effect { name, at: named.at.clone(), raw });
+        }
+    }
+    effects
+}
+
+fn own_and_common<'s>(split: &'s Split, group: &'s Group, test: fn(Role) -> bool) -> Vec<&'s Named> {
+    let common = split.shared.iter().filter(|named| {
+        split.common.contains(&key(named.name.stream.as_deref().unwrap_or(named.name.role.word())))
+    });
+    group.named.iter().chain(common).filter(|named| test(named.name.role)).collect()
+}
+
+/// The numbers of one row, as long as the years and in their direction.
+fn row(context: &mut Context, named: &Named, axis: &Axis) -> Option<Vec<f64>> {
+    if let Some(problem) = wrong_shape(named, axis) {
+        context.report(problem);
+        return None;
+    }
+    check_merged(context, named);
+    check_aligned(context, &named.at, &named.from, &axis.at);
+    let grid = context.grid(&named.at)?;
+    let read = numbers(context, &grid, &named.from);
+    if read.blanks.len() == read.values.len() {
+        context.report(
+            Problem::warning("stream-blank", named.place(), "is blank in every year and counts as 0")
+                .hint("enter the flows, or check what the name refers to"),
+        );
+    } else {
+        for cell in read.blanks {
+            context.report(note(
+                "blank-zero",
+                place(&named.at, cell, &named.from),
+                "is blank and counts as 0",
+            ));
+        }
+    }
+    Some(read.values)
+}
+
+/// Why a range is not as long as the years and in their direction, with the range that would be.
+pub(super) fn wrong_shape(named: &Named, axis: &Axis) -> Option<Problem> {
+    let years = axis.labels.len() as u64;
+    if direction(&named.at) == Some(axis.direction) && named.at.range.len() == years {
+        return None;
+    }
+    let found = match direction(&named.at) {
+        Some(Direction::Across) => format!("{} cells across", named.at.range.cols()),
+        Some(Direction::Down) => format!("{} cells down", named.at.range.rows()),
+        None => format!("{} rows and {} columns", named.at.range.rows(), named.at.range.cols()),
+    };
+    let way = match axis.direction {
+        Direction::Across => "across",
+        Direction::Down => "down",
+    };
+    Some(
+        Problem::error(
+            "shape",
+            named.place(),
+            format!("has {found}, allowed are {years} {way}, as the years {}", axis.at),
+        )
+        .hint(format!("let {} refer to {}", named.from, beside_years(&named.at, axis))),
+    )
+}
+
+/// The row (or column) of a range, in the columns (or rows) of the years.
+fn beside_years(at: &SheetRange, axis: &Axis) -> SheetRange {
+    let mut fixed = axis.at.range;
+    match axis.direction {
+        Direction::Across => (fixed.first.row, fixed.last.row) = (at.range.first.row, at.range.first.row),
+        Direction::Down => (fixed.first.col, fixed.last.col) = (at.range.first.col, at.range.first.col),
+    }
+    SheetRange { sheet: at.sheet.clone(), range: fixed }
+}
+
+/// Only the first cell of a merged area holds anything; the others would count as 0 unnoticed.
+fn check_merged(context: &mut Context, named: &Named) {
+    let Some(facts) = context.facts(&named.at.sheet) else { return };
+    for merged in facts.merged.iter().filter(|merged| merged.intersects(&named.at.range)) {
+        context.report(
+            Problem::error(
+                "merged",
+                place(&named.at, merged.first, &named.from),
+                format!("is part of the merged cells {merged}, of which only the first holds a flow"),
+            )
+            .hint("unmerge the cells and enter one flow a year"),
+        );
+    }
+}
+
+fn add_settings(context: &mut Context, split: &Split, group: &Group, stream: &mut Stream) {
+    let about = |role| split.about(group, role, &stream.name);
+    if let Some(unit) = about(Role::Unit).and_then(|named| settings::unit(context, named)) {
+        stream.unit = unit;
+    }
+    if let Some(uplift) = settings::uplift(context, about(Role::Uplift)) {
+        stream.uplift = uplift;
+    }
+    stream.residual = about(Role::Residual).and_then(|named| settings::residual(context, named));
+    stream.tail = about(Role::Tail).and_then(|named| settings::tail(context, named));
+}
+
+/// A cost stream wholly negative with nothing declared is a question, not a benefit.
+fn check_sign(context: &mut Context, stream: &Stream, signs: Signs) {
+    let has = |sign: f64| stream.raw.iter().any(|flow| flow * sign > 0.0);
+    let place = || crate::problem::Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+    let wholly_negative = has(-1.0) && !has(1.0);
+    match stream.kind {
+        StreamKind::Cost if wholly_negative && !signs.declared => context.report(
+            Problem::error(
+                "cost-sign",
+                place(),
+                "is negative in every year, and costs are positive unless said otherwise",
+            )
+            .hint("if costs are entered negative, write `costs negative` in a cell named hence_signs"),
+        ),
+        StreamKind::Cost if signs.costs && has(1.0) && !has(-1.0) => context.report(
+            Problem::warning(
+                "cost-sign",
+                place(),
+                "is positive in every year, and hence_signs says costs are negative",
+            )
+            .hint("check the sign of this stream"),
+        ),
+        StreamKind::Benefit if wholly_negative => context.report(
+            Problem::warning("benefit-sign", place(), "is negative in every year, and benefits are positive")
+                .hint("check the sign, or name it hence_cost_ or hence_flow_"),
+        ),
+        _ => {}
+    }
+}
+
+/// Two streams of one kind with one name could not be told apart.
+fn check_names(context: &mut Context, streams: &[Stream]) {
+    let mut seen: BTreeMap<(String, String), &Stream> = BTreeMap::new();
+    for stream in streams {
+        let id = (format!("{:?}", stream.kind), key(&stream.name));
+        if let Some(twin) = seen.insert(id, stream) {
+            context.report(
+                Problem::error(
+                    "duplicate-stream",
+                    place(&stream.at, Cell { ..stream.at.range.first }, &stream.from),
+                    format!("the stream `{}` is also {} [{}]", stream.name, twin.at, twin.from),
+                )
+                .hint("give each stream its own name"),
+            );
+        }
+    }
+}
