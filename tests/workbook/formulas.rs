@@ -47,7 +47,7 @@ fn present_values_multiply_flows_and_the_analysts_factors() {
     assert_eq!(formula(&writes[0]), "-1000*(1+$F$1)*C10*C$5");
     assert_eq!(
         formula(&writes[9]),
-        "(-1000*(1+$F$1)*L10+1000*$G$1)*L$5",
+        "(-1000*(1+$F$1)*L10-1000*$G$1)*L$5",
         "the residual lowers the last cost"
     );
     let net = target_writes(&a, &o, &layout, 1, &a.choices[1].targets[2], true);

@@ -4,7 +4,7 @@ use super::lines::{AGREES, DIFFERS, Line, Live, col};
 use super::rebuild::Rebuilt;
 use super::{AuditInput, TargetCell, discounting::side_words, discounting::table_ref, offsets};
 use crate::appraisal::{Held, Label, StreamKind, TargetRole};
-use crate::formulas::{absolute, nth, refer, refer_cell, residual, scale, side};
+use crate::formulas::{absolute, nth, refer, refer_cell, residual, residual_sign, scale};
 use crate::layout::{Column, LabelValue, Layout, label_value};
 use crate::patch::Cached;
 use crate::references::{Cell, Range, SheetRange, quote_sheet};
@@ -263,7 +263,7 @@ impl<'a> Maker<'a> {
         let mut total = multiplier * sum;
         if let Some(given) = &stream.residual {
             let last = rebuilt.factor(stream.raw.len().checked_sub(1)?)?;
-            total += side(stream.kind) * stream.sign * stream.unit * given.value * last;
+            total += residual_sign(stream.kind) * stream.unit * given.value * last;
         }
         Some(total + self.input.outcomes[c].streams[s].pv_tail)
     }

@@ -24,9 +24,9 @@ use crate::problem::{Problem, Result};
 use crate::references::{Cell, SheetRange};
 use crate::writer::{self, Sheet, Style};
 
-pub(crate) use checks::role_words;
 pub use own::{DIGEST, OWN, VERDICT, digest};
 pub use summary::VERDICT_AGREES;
+pub(crate) use targets::role_words;
 
 /// The visible names of hence's sheets in this workbook, chosen so that they clash with nothing.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -137,7 +137,7 @@ pub struct Built {
     pub bytes: Vec<u8>,
     /// How to finish its charts, in their order.
     pub charts: Vec<ChartFinish>,
-    /// Names to set when the sheets are grafted: the mark of ownership of each. The verdict's name and
+    /// Names to set when the sheets are grafted: the marks of ownership of each. The verdict's name and
     /// print titles come with the package.
     pub names: Vec<NewName>,
     /// The verdict, evaluated here by the second route; the cell holds it live.
@@ -167,7 +167,7 @@ pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
     let discounting = discounting::sheet(input, layout);
     let mut sheets =
         vec![discounting, summary.sheet, coverage.sheet, checks.sheet, changes::sheet(input), charts];
-    let names = sheets.iter().map(own::mark).collect();
+    let names = sheets.iter().flat_map(own::marks).collect();
     for sheet in &mut sheets {
         put_back(sheet, input.carried);
     }

@@ -127,6 +127,11 @@ impl Rebuilt {
         (text.len() <= MAX_FORMULA).then_some(text)
     }
 
+    /// The formula of the factor at one moment, never averaged.
+    pub fn moment(&self, t: &str) -> Option<String> {
+        Some(self.sum(self.route.as_ref()?, t))
+    }
+
     fn sum(&self, route: &Route, t: &str) -> String {
         let single = route.parts.len() == 1;
         let terms = route.parts.iter().enumerate().map(|(k, (_, form))| {

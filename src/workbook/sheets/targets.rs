@@ -4,7 +4,7 @@ use super::TargetCell;
 use super::checks::{Maker, absolute_cell, column, held, place};
 use super::lines::{Line, Live, col};
 use crate::appraisal::TargetRole;
-use crate::formulas::{find, refer_cell, residual, scale, side};
+use crate::formulas::{find, refer_cell, residual, residual_sign, scale, side};
 use crate::patch::Cached;
 use crate::writer::{MAX_FORMULA, Style};
 
@@ -118,7 +118,7 @@ impl Maker<'_> {
             && let (Some(more), Some(given)) = (residual(stream, self.home), &stream.residual)
         {
             text.push_str(&more);
-            value += side(stream.kind) * stream.sign * stream.unit * given.value;
+            value += residual_sign(stream.kind) * stream.unit * given.value;
         }
         (text, value)
     }
@@ -145,15 +145,24 @@ impl Maker<'_> {
             let at = self.sections[c];
             let net = column(self.net_column(c), at.years, at.streams - 1);
             let t = column(col::OFFSET, at.years, at.streams - 1);
+            // An averaged flow stands half at each end of its year.
+            let ends: &[f64] = if self.rebuilt(c).averaged { &[0.0, 1.0] } else { &[0.0] };
+            let share = 1.0 / ends.len() as f64;
             let (mut value, mut slope) = (0.0, 0.0);
             for (i, t) in self.rebuilt(c).offsets.iter().enumerate() {
-                let flow = self.net(c, i)?.1;
-                value += flow * (1.0 + rate).powf(-t);
-                slope += flow * t * (1.0 + rate).powf(-t - 1.0);
+                let flow = share * self.net(c, i)?.1;
+                for t in ends.iter().map(|end| t - end) {
+                    value += flow * (1.0 + rate).powf(-t);
+                    slope += flow * t * (1.0 + rate).powf(-t - 1.0);
+                }
             }
+            let each = |term: &dyn Fn(&str) -> String| {
+                let terms: Vec<String> = ends.iter().map(|end| term(&format!("({t}-{end})"))).collect();
+                format!("{share}*({})", terms.join("+"))
+            };
             Some([
-                (format!("SUMPRODUCT({net},(1+{cell})^(0-{t}))"), value),
-                (format!("SUMPRODUCT({net},{t},(1+{cell})^(0-{t}-1))"), slope),
+                (each(&|t| format!("SUMPRODUCT({net},(1+{cell})^(0-{t}))")), value),
+                (each(&|t| format!("SUMPRODUCT({net},{t}*(1+{cell})^(0-{t}-1))")), slope),
             ])
         };
         let [value, slope] = sums(c)?;
@@ -168,20 +177,21 @@ impl Maker<'_> {
         Some(Live::number(format!("{cell}+{text}"), rate + step))
     }
 
-    /// The forward rate of a year, D(t-1)/D(t) - 1, where its offset is 1 or more.
+    /// The forward rate D(n-1)/D(n) - 1 of the year n that holds the offset, where that is after the base.
     fn rebuilt_rate(&self, c: usize, i: usize) -> Option<Live> {
         let rebuilt = self.rebuilt(c);
-        let t = rebuilt.offsets[i];
-        let route = rebuilt.route.as_ref().filter(|_| !rebuilt.averaged && t >= 1.0)?;
+        let route = rebuilt.route.as_ref().filter(|_| rebuilt.offsets[i] > 0.0)?;
+        let n = rebuilt.offsets[i].ceil();
         let cell = absolute_cell(self.sections[c].years + i as u32, col::OFFSET);
-        let (before, at) = (rebuilt.formula(&format!("({cell}-1)"))?, rebuilt.formula(&cell)?);
+        let year = format!("ROUNDUP({cell},0)");
+        let (before, at) = (rebuilt.moment(&format!("({year}-1)"))?, rebuilt.moment(&year)?);
         let text = format!("({before})/({at})-1");
-        (text.len() <= MAX_FORMULA).then(|| Live::number(text, route.factor(t - 1.0) / route.factor(t) - 1.0))
+        (text.len() <= MAX_FORMULA).then(|| Live::number(text, route.factor(n - 1.0) / route.factor(n) - 1.0))
     }
 }
 
 /// A role in words.
-pub(super) fn role_words(role: &TargetRole) -> String {
+pub(crate) fn role_words(role: &TargetRole) -> String {
     match role {
         TargetRole::Factor => "factor".into(),
         TargetRole::PvByYear(None) => "PV by year: net".into(),
