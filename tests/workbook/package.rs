@@ -45,7 +45,7 @@ fn entries(bytes: &[u8]) -> Vec<(String, Vec<u8>, String)> {
                 entry.comment(),
                 entry.extra_data(),
             );
-            (entry.name().to_owned(), packed, about)
+            (entry.name().expect("a name").into_owned(), packed, about)
         })
         .collect()
 }
