@@ -96,7 +96,9 @@ fn libreoffice_recalculates_what_was_written() {
             Err(error) => wrong.push(error),
         }
     }
+    for (n, b) in &books { std::fs::write(format!("/tmp/out/{n}"), b).unwrap(); } // SCRATCH
     let back = saved(&soffice, &books, Recalculate::All);
+    for (n, b) in &back { std::fs::write(format!("/tmp/out/lo-{n}"), b).unwrap(); } // SCRATCH
     let mut compared = 0;
     for (name, bytes) in &books {
         let after = &back[name];

@@ -72,15 +72,15 @@ pub const CASES: &[Case] = {
         case("2.5% to 2025, 1.5% after", "flows end", Dash, true, false),
         case("3% to 10, 2% after; edges from 2020", "flows end", Calendar, false, true),
         case("4% to 10, 3% to 30, 2% after; whole horizon by flow", "flows end", Calendar, true, true),
-        case("4% to 10, 3% to 30, 2% after; whole horizon by flow", "flows middle", Slash, false, false),
+        case("4% to 10, 3% to 30, 2% after; whole horizon by flow", "flows middle, base start", Slash, false, false),
         case("4% to 10, 3% to 30, 2% after; whole horizon by length", "flows end", Numbers, true, false),
         case("3.9% at 3, 4% at 10, 4.2% at 30; whole horizon by length, interpolated", "flows end", Calendar, true, true),
         case("3.9% at 3, 4% at 10, 4.2% at 30; whole horizon by flow, interpolated", "flows averaged, base start", Calendar, false, true),
         with(case("preference 0.5%, hazard 1%, elasticity 1, growth 2%", "flows end", Calendar, true, true), 0, true),
         case("preference 0.5%, hazard 1%, elasticity 1.5, growth 2%; continuous", "flows middle", Dates, false, false),
-        case("preference 1%, elasticity 2, growth 2%; exact", "flows averaged", Slash, true, true),
+        case("preference 1%, elasticity 2, growth 2%; exact", "flows averaged, base start", Slash, true, true),
         case("preference 1%, elasticity 2, growth 2% to 20, -0.5% after", "flows end", Calendar, true, false),
-        case("preference 1%, elasticity 2, growth 2% to 20, 1% after; exact", "flows middle", Fy, false, true),
+        case("preference 1%, elasticity 2, growth 2% to 20, 1% after; exact", "flows middle, base start", Fy, false, true),
         case("preference 1%, elasticity 2, growth 2% sd 3.6%", "flows end", Calendar, false, true),
         case("preference 1%, elasticity 2, log growth 2% sd 3.6%", "flows middle", Numbers, true, true),
         with(case("gamma mean 4% sd 3%", "flows end", Calendar, true, true), 2, true),
@@ -171,7 +171,7 @@ impl Case {
         let sign = if self.settings { "-" } else { "" };
         if self.settings {
             cells += "A4: 'Signs | 'costs negative\nA5: 'Unit | 'k\nA6: 'Uplift | 0.15\nA7: 'Left | -250\n\
-                      A8: 'Tail | 'for 20 years\nA9: 'Site | 75\n";
+                      A8: 'Tail | 'to 60\nA9: 'Site | 75\n";
             names += ", hence_signs B4, hence_unit_works B5, hence_uplift_works B6, hence_residual_works B7, \
                       hence_tail_running B8, hence_residual_access B9";
         }
@@ -197,7 +197,7 @@ impl Case {
             names += &format!(", hence_{name} E{}", k + 1);
         }
         // The analyst's own formulas, over filled cells and over others.
-        cells += "G1: =E5*2>0\nG2: =SUM(B1:B2)>1\nG3: =IF(E5>0,\"go\",\"stop\")>0\n";
+        cells += "G1: =E5*2>0\nG2: =G1+B6>0\nG3: =IF(E5>0,\"go\",\"stop\")>0\n";
         Small::default().sheet("Appraisal", &cells).names(&names)
     }
 }
@@ -221,7 +221,7 @@ pub fn options() -> Small {
         .sheet(
             "Inputs",
             "A1: 'Base | 2026\nA2: 'Basis | '3.5% to 10, 3% after\nA3: 'Baseline | 'Do nothing\n\
-             A4: 'Left of the works | 80\nA5: 'Damage | 'growing 1%, for 30 years\nA6: 'Constrained | 'works",
+             A4: 'Left of the works | 80\nA5: 'Damage | 'growing 1%, to 2075\nA6: 'Constrained | 'works",
         )
         .names(
             "hence_base B1, hence_basis B2, hence_baseline B3, hence_residual_works B4, hence_tail_flood B5, \
