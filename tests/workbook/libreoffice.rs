@@ -28,7 +28,12 @@ fn sample(name: &str) -> Vec<u8> {
 }
 
 /// The workbook filled, its verdict agreeing; or what is wrong.
-fn try_filled(name: &str, bytes: &[u8], request: &FillRequest, catalogue: &Catalogue) -> Result<Vec<u8>, String> {
+fn try_filled(
+    name: &str,
+    bytes: &[u8],
+    request: &FillRequest,
+    catalogue: &Catalogue,
+) -> Result<Vec<u8>, String> {
     let package = Package::from_bytes(name, bytes.to_vec()).map_err(|error| format!("{name}: {error}"))?;
     let filled = fill(&package, request, catalogue).map_err(|error| format!("{name}: {error}"))?;
     let cell = verdict(&filled.bytes);
@@ -64,10 +69,12 @@ fn compare(before: &Cells, after: &Cells) -> (usize, Vec<String>) {
         let stands = |cell| after.get(&(sheet.clone(), cell)).map(|c| &c.value);
         let difference = match stands(*cell) {
             None => Some("is gone".to_owned()),
-            Some(new) if is_difference(sheet, *cell) => match (new, stands(Cell { col: cell.col + 1, ..*cell })) {
-                (Stored::Number(x), Some(Stored::Number(most))) if x <= most => None,
-                (value, most) => Some(format!("{value:?}, allowed {most:?}")),
-            },
+            Some(new) if is_difference(sheet, *cell) => {
+                match (new, stands(Cell { col: cell.col + 1, ..*cell })) {
+                    (Stored::Number(x), Some(Stored::Number(most))) if x <= most => None,
+                    (value, most) => Some(format!("{value:?}, allowed {most:?}")),
+                }
+            }
             Some(new) => apart(&old.value, new),
         };
         compared += 1;
@@ -78,7 +85,8 @@ fn compare(before: &Cells, after: &Cells) -> (usize, Vec<String>) {
 
 /// Every appraisal of this file: name, workbook.
 fn appraisals() -> Vec<(String, Vec<u8>)> {
-    let mut books: Vec<(String, Vec<u8>)> = SAMPLES.iter().map(|name| ((*name).to_owned(), sample(name))).collect();
+    let mut books: Vec<(String, Vec<u8>)> =
+        SAMPLES.iter().map(|name| ((*name).to_owned(), sample(name))).collect();
     books.push(("options.xlsx".into(), books::options().bytes()));
     books.extend(CASES.iter().enumerate().map(|(i, case)| (format!("case{i:02}.xlsx"), case.book().bytes())));
     books
@@ -96,9 +104,13 @@ fn libreoffice_recalculates_what_was_written() {
             Err(error) => wrong.push(error),
         }
     }
-    for (n, b) in &books { std::fs::write(format!("/tmp/out/{n}"), b).unwrap(); } // SCRATCH
+    for (n, b) in &books {
+        std::fs::write(format!("/tmp/out/{n}"), b).unwrap();
+    } // SCRATCH
     let back = saved(&soffice, &books, Recalculate::All);
-    for (n, b) in &back { std::fs::write(format!("/tmp/out/lo-{n}"), b).unwrap(); } // SCRATCH
+    for (n, b) in &back {
+        std::fs::write(format!("/tmp/out/lo-{n}"), b).unwrap();
+    } // SCRATCH
     let mut compared = 0;
     for (name, bytes) in &books {
         let after = &back[name];

@@ -180,9 +180,14 @@ impl Case {
         cells += &self.values(2, |i| format!("{sign}{}", 20 + i % 7));
         cells += &self.values(3, |i| if i > 2 { format!("{}.5", 130 + 3 * i) } else { "0".into() });
         cells += &self.values(4, |i| format!("{}", 5.0 - f64::from(i % 11)));
-        for (line, name) in
-            [(1, "cost_works"), (2, "cost_running"), (3, "benefit_access"), (4, "flow_other"), (6, "pv"), (7, "pv_works")]
-        {
+        for (line, name) in [
+            (1, "cost_works"),
+            (2, "cost_running"),
+            (3, "benefit_access"),
+            (4, "flow_other"),
+            (6, "pv"),
+            (7, "pv_works"),
+        ] {
             names += &format!(", hence_{name} {}", self.range(line));
         }
         // A second route to rates needs them where a year begins and ends.
@@ -190,8 +195,17 @@ impl Case {
         if self.factors {
             names += &format!(", hence_factor {}", self.range(5));
         }
-        let results =
-            ["pv_running", "pv_access", "pv_costs", "pv_benefits", "npv", "ratio", "annual", "irr", "payback"];
+        let results = [
+            "pv_running",
+            "pv_access",
+            "pv_costs",
+            "pv_benefits",
+            "npv",
+            "ratio",
+            "annual",
+            "irr",
+            "payback",
+        ];
         for (k, name) in results.iter().enumerate() {
             cells += &format!("D{}: '{name}\n", k + 1);
             names += &format!(", hence_{name} E{}", k + 1);

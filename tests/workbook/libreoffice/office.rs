@@ -22,7 +22,8 @@ pub fn soffice() -> Option<PathBuf> {
     let path = std::env::var_os("PATH").unwrap_or_default();
     let found = std::env::split_paths(&path).map(|folder| folder.join("soffice")).find(|file| file.is_file());
     if found.is_none() {
-        let message = "LibreOffice (soffice) is not installed: nothing was recalculated, this test did not run";
+        let message =
+            "LibreOffice (soffice) is not installed: nothing was recalculated, this test did not run";
         assert!(std::env::var_os("HENCE_REQUIRE_TOOLS").is_none(), "{message}");
         eprintln!("{message}");
     }
