@@ -3,8 +3,8 @@
 //! Workbooks are the samples and small ones made here. Without LibreOffice each test says that it did not run, and
 //! fails where HENCE_REQUIRE_TOOLS is set.
 
-mod books;
-mod cells;
+pub mod books;
+pub mod cells;
 mod office;
 
 use std::path::Path;

@@ -8,6 +8,7 @@ mod hostile;
 mod libreoffice;
 mod model;
 mod names_edit;
+mod own;
 mod package;
 mod patch;
 mod preserve;
