@@ -1,10 +1,9 @@
 //! The charts sheet: the factor curve, present value by era, and net present value against a flat rate.
 
-use hence_core::{Basis, Eras, Position, Where};
+use hence_core::{Basis, Eras, Where};
 
 use super::AuditInput;
 use super::rebuild::base_year;
-use crate::appraisal::Label;
 use crate::formulas::side;
 use crate::graft::{ChartFinish, Legend};
 use crate::layout::Layout;
@@ -209,14 +208,10 @@ fn npv_at(input: &AuditInput<'_>, c: usize, rate: f64) -> Option<f64> {
     let outcome = &input.outcomes[c];
     let base_year = base_year(&choice.base.value);
     let curve = Basis::from_rate(rate).ok()?.curve(&Where { base_year, length: None }).ok()?;
-    let labels = &input.appraisal.axes[choice.axis].labels;
-    let yearly = !labels.iter().any(|l| matches!(l, Label::Offset(_) | Label::Date(_)));
-    let averaged = yearly && outcome.timing.flows == Position::Averaged;
+    let shift = super::offsets::shift(outcome.timing);
     let mut total = 0.0;
     for (t, net) in outcome.offsets.iter().zip(&outcome.net) {
-        let at = curve.factor(*t).ok()?;
-        let factor = if averaged { (at + curve.factor(t - 1.0).ok()?) / 2.0 } else { at };
-        total += net * factor;
+        total += net * curve.timed_factor(t - shift, outcome.timing).ok()?;
     }
     for stream in &choice.streams {
         let (Some(tail), Some(raw), Some(last)) = (&stream.tail, stream.raw.last(), outcome.offsets.last())
@@ -224,7 +219,9 @@ fn npv_at(input: &AuditInput<'_>, c: usize, rate: f64) -> Option<f64> {
             continue;
         };
         let flow = stream.sign * stream.unit * (1.0 + stream.uplift.value) * raw;
-        total += side(stream.kind) * tail.value.present_value(&curve, *last, flow, base_year).ok()?;
+        let (years, timing) = (last - shift, outcome.timing);
+        let tail = tail.value.timed_present_value(&curve, years, timing, flow, base_year).ok()?;
+        total += side(stream.kind) * tail;
     }
     Some(total)
 }
