@@ -27,8 +27,8 @@ pub mod schedules;
 pub mod sheets;
 mod splice;
 pub mod stale;
-
 pub mod styles;
+pub mod suggest;
 pub mod tolerance;
 pub mod valuation;
 pub mod verify;

@@ -16,4 +16,5 @@ mod roles;
 mod scenario;
 mod small;
 mod stale;
+mod suggest;
 mod verify;
