@@ -2,7 +2,7 @@
 //! sheets, is verified, validated against the schemas and opened in LibreOffice, or is refused with a reason.
 //!
 //! HENCE_XSDVAL names a script that validates packages (with Python and lxml) against the schemas in
-//! HENCE_XSD. What is absent is said in the table's heading, and that check is left out.
+//! HENCE_XSD. HENCE_KEEP_OUTPUTS names a folder for the outputs, to look at. What is absent is said in the table's heading, and that check is left out.
 
 use std::collections::{BTreeMap, BTreeSet};
 use std::fmt::Write as _;
@@ -109,7 +109,7 @@ fn unopened(outputs: &[(PathBuf, PathBuf)], folder: &Path) -> (BTreeSet<PathBuf>
             break;
         }
         let (input, output) = left.remove(0);
-        if converted(&[output.clone()], folder).is_empty() {
+        if converted(std::slice::from_ref(&output), folder).is_empty() {
             let before = !converted(&[input], folder).is_empty();
             if before { &mut spoilt } else { &mut never }.insert(output);
         }
