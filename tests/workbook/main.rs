@@ -1,6 +1,7 @@
 //! The workbook crate from outside: real, small and hostile workbooks.
 
 mod bare;
+mod codes;
 mod fill;
 mod formulas;
 mod graft;
