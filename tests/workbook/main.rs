@@ -11,6 +11,7 @@ mod names_edit;
 mod package;
 mod patch;
 mod preserve;
+mod readme;
 mod references;
 mod resolve;
 mod roles;
