@@ -7,6 +7,9 @@ use std::path::{Path, PathBuf};
 
 use hence_core::{Basis, Catalogue, ScheduleStatus};
 use hence_workbook::codes::{CODES, Group};
+use hence_workbook::fill::{FillRequest, fill};
+use hence_workbook::model::Workbook;
+use hence_workbook::package::Package;
 use hence_workbook::roles::{ROLES, RoleInfo, Status, Takes, Way, parse_name};
 
 fn root() -> PathBuf {
@@ -180,6 +183,37 @@ fn names_and_rate_lines_shown_are_valid() {
         let line = line.split("    ").next().unwrap_or_default();
         let basis = Basis::parse(line, &Catalogue::builtin());
         assert!(basis.is_ok(), "README.md shows `{line}`: {}", basis.unwrap_err());
+    }
+}
+
+/// What the README quotes of the sample's output is there when the sample is filled.
+#[test]
+fn the_sample_comes_out_as_shown() {
+    let text = readme();
+    let sample = Package::open(&root().join("samples/mine-drainage.xlsx")).expect("the sample opens");
+    let filled = fill(&sample, &FillRequest::default(), &Catalogue::builtin()).expect("the sample is filled");
+    let output = Package::from_bytes("readme.xlsx", filled.bytes).expect("the output opens");
+    let formula = spans(&text).into_iter().find_map(|span| span.strip_prefix("=INDEX(")).expect("a formula");
+    let formula = format!(">INDEX({formula}<");
+    let parts: Vec<String> =
+        output.parts().filter(|part| part.starts_with("xl/worksheets/")).map(str::to_owned).collect();
+    let holds = |part: &String| {
+        let bytes = output.part(part).expect("the part can be read").unwrap_or_default();
+        String::from_utf8_lossy(&bytes).contains(&formula)
+    };
+    assert!(parts.iter().any(holds), "no cell of the filled sample holds {formula}");
+    let book = Workbook::read(&output).expect("the output is a workbook");
+    let section = text.split("\n## What comes out\n").nth(1).and_then(|rest| rest.split("\n## ").next());
+    let rows = section.expect("a section").lines().filter_map(|line| line.strip_prefix("| Audit "));
+    let sheets: Vec<String> =
+        rows.map(|row| format!("Audit {}", row.split(" |").next().unwrap_or_default())).collect();
+    assert_eq!(sheets.len(), 5, "{sheets:?}");
+    for sheet in sheets.iter().map(String::as_str).chain(["Discounting"]) {
+        assert!(book.sheets.iter().any(|held| held.name == sheet), "the filled sample has no sheet {sheet}");
+    }
+    let timing = filled.report.options[0].timing.rsplit(": ").next().unwrap_or_default();
+    for quoted in [filled.report.verdict.as_str(), timing] {
+        assert!(text.contains(quoted), "README.md does not quote {quoted:?}");
     }
 }
 
