@@ -5,6 +5,7 @@
 
 pub mod appraisal;
 pub mod check;
+pub mod codes;
 pub mod fill;
 pub mod formulas;
 pub mod graft;

@@ -5,6 +5,7 @@ mod curve;
 mod fill;
 mod help;
 mod names;
+mod readme;
 mod schedules;
 
 use std::path::{Path, PathBuf};

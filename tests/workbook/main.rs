@@ -1,6 +1,7 @@
 //! The workbook crate from outside: real, small and hostile workbooks.
 
 mod bare;
+mod codes;
 mod fill;
 mod formulas;
 mod graft;
@@ -10,6 +11,7 @@ mod names_edit;
 mod package;
 mod patch;
 mod preserve;
+mod readme;
 mod references;
 mod resolve;
 mod roles;
