@@ -5,11 +5,11 @@
 
 pub mod appraisal;
 pub mod check;
-pub mod model;
 pub mod fill;
 pub mod formulas;
 pub mod graft;
 pub mod layout;
+pub mod model;
 pub mod names_edit;
 pub mod outcome;
 mod own;

@@ -25,6 +25,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> (Sheet, Vec<Char
     let options = input.appraisal.choices.len() as u32;
     sheet.columns(0, 0, 22.0);
     sheet.columns(1, options.max(7), 16.0);
+    sheet.upright();
     sheet.text(0, 0, Style::Title, "Audit charts");
     sheet.text(1, 0, Style::Text, "The numbers behind each chart stand below.");
     let mut finishes = Vec::new();

@@ -48,7 +48,7 @@ pub(super) fn sheet(
     sheet.text(0, 0, Style::Title, "Audit summary");
     let verdict = verdict(&mut sheet, input, checks, coverage);
     let mut page = Page { sheet, row: COUNT_DIFFERS + 2 };
-    page.from_what(input);
+    page.provenance(input);
     page.basis(input, layout);
     page.results(input, layout);
     page.checks(input, checks, coverage);
@@ -128,7 +128,7 @@ impl Page {
         self.row += 1;
     }
 
-    fn from_what(&mut self, input: &AuditInput<'_>) {
+    fn provenance(&mut self, input: &AuditInput<'_>) {
         let meta = input.meta;
         self.section("What, from what");
         self.pair("Workbook", &meta.input_name);
