@@ -1,14 +1,13 @@
 //! The charts sheet: the factor curve, present value by era, and net present value against a flat rate.
 
-use hence_core::{Basis, Eras, Position, Where};
+use hence_core::{Basis, Eras, Where};
 
 use super::AuditInput;
-use super::rebuild::base_year;
-use crate::appraisal::Label;
-use crate::formulas::side;
+use crate::clock::base_year;
 use crate::graft::{ChartFinish, Legend};
 use crate::layout::Layout;
 use crate::references::{Cell, Range, SheetRange};
+use crate::valuation::npv_on;
 use crate::writer::{Chart, ChartKind, Series, Sheet, Style};
 
 /// Columns and rows of a chart.
@@ -206,27 +205,9 @@ pub(super) fn thousands(x: f64) -> String {
 /// Net present value of an option at a flat yearly rate; none where a tail does not converge.
 fn npv_at(input: &AuditInput<'_>, c: usize, rate: f64) -> Option<f64> {
     let choice = &input.appraisal.choices[c];
-    let outcome = &input.outcomes[c];
-    let base_year = base_year(&choice.base.value);
-    let curve = Basis::from_rate(rate).ok()?.curve(&Where { base_year, length: None }).ok()?;
-    let labels = &input.appraisal.axes[choice.axis].labels;
-    let yearly = !labels.iter().any(|l| matches!(l, Label::Offset(_) | Label::Date(_)));
-    let averaged = yearly && outcome.timing.flows == Position::Averaged;
-    let mut total = 0.0;
-    for (t, net) in outcome.offsets.iter().zip(&outcome.net) {
-        let at = curve.factor(*t).ok()?;
-        let factor = if averaged { (at + curve.factor(t - 1.0).ok()?) / 2.0 } else { at };
-        total += net * factor;
-    }
-    for stream in &choice.streams {
-        let (Some(tail), Some(raw), Some(last)) = (&stream.tail, stream.raw.last(), outcome.offsets.last())
-        else {
-            continue;
-        };
-        let flow = stream.sign * stream.unit * (1.0 + stream.uplift.value) * raw;
-        total += side(stream.kind) * tail.value.present_value(&curve, *last, flow, base_year).ok()?;
-    }
-    Some(total)
+    let at = Where { base_year: base_year(&choice.base.value), length: None };
+    let curve = Basis::from_rate(rate).ok()?.curve(&at).ok()?;
+    npv_on(input.appraisal, choice, &curve, input.outcomes[c].timing).ok()
 }
 
 #[cfg(test)]
