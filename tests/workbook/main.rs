@@ -6,6 +6,7 @@ mod fill;
 mod formulas;
 mod graft;
 mod hostile;
+mod libreoffice;
 mod model;
 mod names_edit;
 mod package;

@@ -75,7 +75,10 @@ pub(super) fn formula(
         Label::Financial(y, text) if text.starts_with(&y.to_string()) => {
             format!("VALUE(LEFT({label_cell},4))-{base}{plus}")
         }
-        Label::Financial(y, _) => format!("{y}-{base}{plus}"),
+        // The text is compared, so that the constant counts only while the label stands.
+        Label::Financial(y, text) => {
+            format!("IF({label_cell}=\"{}\",{y},NA())-{base}{plus}", text.replace('"', "\"\""))
+        }
         Label::Date(date) => match (&choice.base.value, &choice.base.at) {
             (Base::Date(from), Some(at)) if date >= from => {
                 let base = refer(home, at);
@@ -84,7 +87,11 @@ pub(super) fn formula(
                 let end = format!("EDATE({base},12*{years}+12)");
                 format!("{years}+({label_cell}-{start})/({end}-{start})")
             }
-            (Base::Date(_), _) => constant(rebuilt(label, &choice.base.value, timing)),
+            (Base::Date(_), _) => {
+                let offset = rebuilt(label, &choice.base.value, timing);
+                let day = format!("DATE({},{},{})", date.year(), date.month(), date.day());
+                format!("IF({label_cell}={day},{},NA())", constant(offset))
+            }
             _ => format!("YEAR({label_cell})-{base}{plus}"),
         },
     }

@@ -305,10 +305,11 @@ impl Page {
         let factors: usize = input.outcomes.iter().map(|o| o.factors.len()).sum();
         let in_lines = input.cells.iter().filter(|cell| is_factor(input, cell)).count();
         let cells = input.cells.len() - in_lines;
-        let rest = checks.count.saturating_sub(factors + cells);
+        let rest = checks.count.saturating_sub(factors + cells + checks.settings);
         for (label, number, allowed) in [
             ("Factors: second route, Discounting, filled cells", factors, "1e-9 relative"),
             ("Present values and totals on Discounting", rest, "1e-9 of the gross present value"),
+            ("What the workbook states: base, basis, timing and the like", checks.settings, "none"),
             ("Other filled or compared cells", cells, "half of the last displayed unit, or 1e-9"),
             ("Undiscounted totals of valued rows", coverage.valued, "1e-9 relative, or 0.000001"),
         ] {
