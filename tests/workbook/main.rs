@@ -1,6 +1,7 @@
 //! The workbook crate from outside: real, small and hostile workbooks.
 
 mod bare;
+mod corpus;
 mod fill;
 mod formulas;
 mod graft;
@@ -16,4 +17,5 @@ mod roles;
 mod scenario;
 mod small;
 mod stale;
+mod tools;
 mod verify;
