@@ -10,7 +10,6 @@ mod model;
 mod names_edit;
 mod package;
 mod patch;
-mod preserve;
 mod references;
 mod resolve;
 mod roles;
