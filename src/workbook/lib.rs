@@ -11,6 +11,7 @@ pub mod graft;
 pub mod layout;
 pub mod model;
 pub mod names_edit;
+pub mod naming;
 pub mod outcome;
 mod own;
 pub mod package;
@@ -27,8 +28,9 @@ pub mod schedules;
 pub mod sheets;
 mod splice;
 pub mod stale;
-
+pub mod start;
 pub mod styles;
+pub mod suggest;
 pub mod tolerance;
 pub mod valuation;
 pub mod verify;

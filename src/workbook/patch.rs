@@ -159,10 +159,10 @@ fn refusals(layout: &Layout, writes: &BTreeMap<Cell, CellWrite>) -> Vec<Problem>
     for (&at, write) in writes {
         problems.extend(cell::refusal(at, write));
         let in_the_way = |(range, block): &&(Range, Block)| match block {
-            Block::Array => range.first != range.last,
+            Block::Array => !range.is_single(),
             Block::Table => true,
             Block::Merged => at != range.first,
-        } && range_holds(range, at);
+        } && range.contains(at);
         if write.overwrites()
             && let Some((range, block)) = layout.blocks.iter().find(in_the_way)
         {
@@ -190,11 +190,6 @@ fn block_refusal(at: Cell, range: &Range, block: Block) -> Problem {
 
 /// A problem with one cell; the caller, who knows the sheet's name, may add it to the place.
 fn problem(code: &'static str, at: Cell, what: &str) -> Problem {
-    let place = Place { sheet: None, range: Some(Range { first: at, last: at }), name: None };
+    let place = Place { range: Some(Range::cell(at)), ..Place::default() };
     Problem::error(code, place, format!("cell {at} {what}"))
-}
-
-fn range_holds(range: &Range, at: Cell) -> bool {
-    (range.first.row..=range.last.row).contains(&at.row)
-        && (range.first.col..=range.last.col).contains(&at.col)
 }

@@ -121,10 +121,13 @@ impl<'a> Sheets<'a> {
                 wanted.entry(&range.sheet).or_default().push(range.range);
             }
         }
+        let mut problems = Vec::new();
         for (sheet, ranges) in wanted {
-            self.load_sheet(sheet, ranges)?;
+            if let Err(error) = self.load_sheet(sheet, ranges) {
+                problems.extend(error.problems().iter().cloned());
+            }
         }
-        Ok(())
+        if problems.is_empty() { Ok(()) } else { Err(problems.into()) }
     }
 
     /// The cells of a range.

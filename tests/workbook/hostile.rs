@@ -9,7 +9,7 @@ use std::path::Path;
 use std::process::Command;
 use std::time::{Duration, Instant};
 
-use calamine::{Data, DataRef, Reader, Xlsx};
+use calamine::{Data, DataRef, Reader, SheetType, Xlsx};
 use hence_workbook::package::{Changes, Package};
 use hence_workbook::preflight::preflight;
 
@@ -99,10 +99,12 @@ fn answer(path: &Path) -> String {
 }
 
 /// The number of cells by the spreadsheet library, and the first one's value as text.
-fn read_all(package: &Package) -> (usize, String) {
+pub fn read_all(package: &Package) -> (usize, String) {
     let mut book: Xlsx<_> = Xlsx::new(Cursor::new(package.bytes())).unwrap();
     let (mut cells, mut first) = (0, String::new());
-    for name in book.sheet_names() {
+    let metadata = book.sheets_metadata().to_vec();
+    for sheet in metadata.into_iter().filter(|sheet| sheet.typ == SheetType::WorkSheet) {
+        let name = sheet.name;
         let mut reader = book.worksheet_cells_reader(&name).unwrap();
         while let Some(cell) = reader.next_cell().unwrap() {
             if cells == 0 {

@@ -18,22 +18,49 @@ use hence_workbook::resolve::{NamesReport, Options, names, resolve};
 /// A workbook under construction.
 #[derive(Clone, Default)]
 pub struct Small {
-    sheets: Vec<(String, String, String)>,
+    sheets: Vec<Page>,
     names: Vec<(String, Option<usize>, String)>,
     date1904: bool,
+}
+
+/// One sheet: its name, and the XML of and around its cells.
+#[derive(Clone, Default)]
+struct Page {
+    name: String,
+    before: String,
+    cells: String,
+    after: String,
+    /// Kind of relationship, part and its XML.
+    related: Vec<(String, String, String)>,
 }
 
 impl Small {
     /// Adds a sheet with its cells.
     pub fn sheet(mut self, name: &str, cells: &str) -> Self {
-        self.sheets.push((name.to_owned(), sheet_data(cells), String::new()));
+        self.sheets.push(Page { name: name.to_owned(), cells: sheet_data(cells), ..Page::default() });
         self
     }
 
     /// Adds XML after the cells of the last sheet.
     pub fn after_cells(mut self, xml: &str) -> Self {
         if let Some(sheet) = self.sheets.last_mut() {
-            sheet.2.push_str(xml);
+            sheet.after.push_str(xml);
+        }
+        self
+    }
+
+    /// Adds XML before the cells of the last sheet.
+    pub fn before_cells(mut self, xml: &str) -> Self {
+        if let Some(sheet) = self.sheets.last_mut() {
+            sheet.before.push_str(xml);
+        }
+        self
+    }
+
+    /// Adds a part (`tables/table1.xml`) that the last sheet has a relationship of that kind to.
+    pub fn related(mut self, kind: &str, part: &str, xml: &str) -> Self {
+        if let Some(sheet) = self.sheets.last_mut() {
+            sheet.related.push((kind.to_owned(), part.to_owned(), xml.to_owned()));
         }
         self
     }
@@ -55,7 +82,7 @@ impl Small {
     }
 
     /// Counts days from 1904.
-    pub fn from_1904(mut self) -> Self {
+    pub fn counting_from_1904(mut self) -> Self {
         self.date1904 = true;
         self
     }
@@ -72,7 +99,7 @@ impl Small {
                     format!("${}${}", &cell[..digits], &cell[digits..])
                 })
                 .collect();
-            let text = format!("{}!{}", quote_sheet(&self.sheets[at].0), fixed.join(":"));
+            let text = format!("{}!{}", quote_sheet(&self.sheets[at].name), fixed.join(":"));
             self.names.push((name.to_owned(), own.then_some(at), text));
         }
         self
@@ -84,16 +111,24 @@ impl Small {
             vec![("_rels/.rels".to_owned(), relationships(&[("officeDocument", "xl/workbook.xml")]))];
         let mut types = String::new();
         let (mut sheets, mut targets) = (String::new(), Vec::new());
-        for (i, (name, data, after)) in self.sheets.iter().enumerate() {
+        for (i, Page { name, before, cells, after, related }) in self.sheets.iter().enumerate() {
             let n = i + 1;
             let _ = write!(sheets, r#"<sheet name="{}" sheetId="{n}" r:id="rId{n}"/>"#, escape(name));
             targets.push(("worksheet", format!("worksheets/sheet{n}.xml")));
             let kind = "application/vnd.openxmlformats-officedocument.spreadsheetml.worksheet+xml";
             let _ =
                 write!(types, r#"<Override PartName="/xl/worksheets/sheet{n}.xml" ContentType="{kind}"/>"#);
-            let sheet =
-                format!("<worksheet xmlns=\"{MAIN}\"><sheetData>{data}</sheetData>{after}</worksheet>");
+            let sheet = format!(
+                "<worksheet xmlns=\"{MAIN}\" xmlns:r=\"{RELATIONS}\">{before}<sheetData>{cells}</sheetData>{after}</worksheet>"
+            );
             parts.push((format!("xl/worksheets/sheet{n}.xml"), sheet));
+            if !related.is_empty() {
+                let list: Vec<(String, String)> =
+                    related.iter().map(|(kind, part, _)| (kind.clone(), format!("/xl/{part}"))).collect();
+                let list: Vec<(&str, &str)> = list.iter().map(|(a, b)| (a.as_str(), b.as_str())).collect();
+                parts.push((format!("xl/worksheets/_rels/sheet{n}.xml.rels"), relationships(&list)));
+                parts.extend(related.iter().map(|(_, part, xml)| (format!("xl/{part}"), xml.clone())));
+            }
         }
         targets.push(("styles", "styles.xml".to_owned()));
         let mut names = String::new();

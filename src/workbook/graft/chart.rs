@@ -99,7 +99,7 @@ pub fn finish_chart(xml: &[u8], finish: &ChartFinish) -> Result<Vec<u8>> {
     let plot_area = chart.child("plotArea").ok_or_else(|| bad_xml("the chart has no plot area"))?;
     let mut edits = Edits::default();
     put(&mut edits, &root, &SPACE, "roundedCorners", "<c:roundedCorners val=\"0\"/>");
-    let caption = finish.title.as_deref().map(|title| titled(title, false)).transpose()?;
+    let caption = finish.title.as_deref().map(|title| titled(title, 1300, false)).transpose()?;
     put(&mut edits, chart, &CHART, "title", caption.as_deref().unwrap_or_default());
     let deleted = format!("<c:autoTitleDeleted val=\"{}\"/>", u8::from(caption.is_none()));
     put(&mut edits, chart, &CHART, "autoTitleDeleted", &deleted);
@@ -143,7 +143,8 @@ fn put(edits: &mut Edits, parent: &Element, order: &[&str], name: &str, text: &s
     edits.insert(parent.children.iter().find(behind).map_or(parent.inner.end, |c| c.span.start), text);
 }
 
-fn titled(text: &str, upright: bool) -> Result<String> {
+/// A title; `size` in hundredths of a point.
+fn titled(text: &str, size: u32, upright: bool) -> Result<String> {
     let Some(text) = escape(text) else {
         let what = "a chart's title holds a character that XML does not allow";
         return Err(Problem::error("text-characters", Place::default(), what).into());
@@ -151,7 +152,7 @@ fn titled(text: &str, upright: bool) -> Result<String> {
     let body = if upright { "<a:bodyPr rot=\"-5400000\" vert=\"horz\"/>" } else { "<a:bodyPr/>" };
     Ok(format!(
         "<c:title><c:tx><c:rich>{body}<a:lstStyle/><a:p><a:pPr><a:defRPr/></a:pPr>\
-         <a:r><a:rPr lang=\"en-GB\"/><a:t>{text}</a:t></a:r></a:p></c:rich></c:tx><c:overlay val=\"0\"/></c:title>"
+         <a:r><a:rPr lang=\"en-GB\" sz=\"{size}\" b=\"1\"/><a:t>{text}</a:t></a:r></a:p></c:rich></c:tx><c:overlay val=\"0\"/></c:title>"
     ))
 }
 
@@ -165,9 +166,18 @@ fn finish_axis(edits: &mut Edits, axis: &Element, finish: &ChartFinish, first: b
         put(edits, axis, &AXIS, "scaling", &scaling);
     }
     put(edits, axis, &AXIS, "delete", "<c:delete val=\"0\"/>");
+    let line = |colour| {
+        format!(
+            "<c:spPr><a:ln w=\"6350\"><a:solidFill><a:srgbClr val=\"{colour}\"/></a:solidFill></a:ln></c:spPr>"
+        )
+    };
+    if !first {
+        let grid = format!("<c:majorGridlines>{}</c:majorGridlines>", line("D9D9D9"));
+        put(edits, axis, &AXIS, "majorGridlines", &grid);
+    }
     let at = axis.child("axPos").map(|at| at.attribute("val")).transpose()?.flatten();
     let upright = matches!(at.as_deref(), Some("l" | "r"));
-    let title = title.as_deref().map(|title| titled(title, upright)).transpose()?;
+    let title = title.as_deref().map(|title| titled(title, 1000, upright)).transpose()?;
     put(edits, axis, &AXIS, "title", title.as_deref().unwrap_or_default());
     if let Some(format) = format {
         let code = escape(format).ok_or_else(|| bad_xml("a number format holds a control character"))?;
@@ -176,6 +186,7 @@ fn finish_axis(edits: &mut Edits, axis: &Element, finish: &ChartFinish, first: b
     if first {
         put(edits, axis, &AXIS, "tickLblPos", "<c:tickLblPos val=\"low\"/>");
     }
+    put(edits, axis, &AXIS, "spPr", &line("595959"));
     Ok(())
 }
 
@@ -255,4 +266,86 @@ pub(super) fn finish_drawing(xml: &[u8], finishes: &[ChartFinish]) -> Result<Vec
         }
     }
     edits.apply(xml)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// A chart as xlsxwriter makes it, shortened.
+    fn part(kind: &str, series: &str) -> String {
+        format!(
+            "<c:chartSpace xmlns:c=\"c\" xmlns:a=\"a\"><c:lang val=\"en-US\"/><c:chart><c:title/><c:plotArea><c:layout/>\
+             <c:{kind}><c:grouping val=\"standard\"/>{series}<c:axId val=\"1\"/><c:axId val=\"2\"/></c:{kind}>\
+             <c:catAx><c:axId val=\"1\"/><c:scaling/><c:axPos val=\"b\"/><c:tickLblPos val=\"nextTo\"/><c:crossAx val=\"2\"/></c:catAx>\
+             <c:valAx><c:axId val=\"2\"/><c:scaling/><c:axPos val=\"l\"/><c:majorGridlines/><c:crossAx val=\"1\"/></c:valAx>\
+             </c:plotArea><c:plotVisOnly val=\"1\"/></c:chart></c:chartSpace>"
+        )
+    }
+
+    fn series(n: usize) -> String {
+        let one =
+            "<c:ser><c:idx/><c:order/><c:cat><c:numRef><c:f>A1</c:f><c:numCache/></c:numRef></c:cat></c:ser>";
+        one.repeat(n)
+    }
+
+    fn finished(xml: &str, finish: &ChartFinish) -> String {
+        String::from_utf8(finish_chart(xml.as_bytes(), finish).unwrap()).unwrap()
+    }
+
+    /// The local names of an element's children.
+    fn order(xml: &str, path: &[&str]) -> Vec<String> {
+        let root = Element::root(xml.as_bytes()).unwrap();
+        root.at(path).unwrap().children.iter().map(|child| child.local().to_owned()).collect()
+    }
+
+    #[test]
+    fn elements_stand_in_the_order_of_the_schema() {
+        let finish = ChartFinish {
+            title: Some("PV by era".to_owned()),
+            x_title: Some("Era".to_owned()),
+            y_title: Some("PV & more".to_owned()),
+            x_range: Some((0.0, 100.0)),
+            legend: Some(Legend::Right),
+            ..ChartFinish::default()
+        };
+        let xml = finished(&part("barChart", &series(1)), &finish);
+        assert_eq!(order(&xml, &[]), ["lang", "roundedCorners", "chart"]);
+        let chart = ["title", "autoTitleDeleted", "plotArea", "legend", "plotVisOnly", "dispBlanksAs"];
+        assert_eq!(order(&xml, &["chart"]), chart);
+        let plot = order(&xml, &["chart", "plotArea", "barChart"]);
+        assert_eq!(plot, ["grouping", "varyColors", "ser", "axId", "axId"]);
+        let ser = order(&xml, &["chart", "plotArea", "barChart", "ser"]);
+        assert_eq!(ser, ["idx", "order", "spPr", "invertIfNegative", "cat"]);
+        let axis = ["axId", "scaling", "delete", "axPos", "title", "tickLblPos", "spPr", "crossAx"];
+        assert_eq!(order(&xml, &["chart", "plotArea", "catAx"]), axis);
+        let axis = ["axId", "scaling", "delete", "axPos", "majorGridlines", "title", "spPr", "crossAx"];
+        assert_eq!(order(&xml, &["chart", "plotArea", "valAx"]), axis);
+        assert!(xml.contains("<c:max val=\"100.0\"/><c:min val=\"0.0\"/>"), "{xml}");
+        assert!(xml.contains("PV &amp; more") && xml.contains("rot=\"-5400000\""), "{xml}");
+        assert!(!xml.contains("numCache"), "{xml}");
+    }
+
+    #[test]
+    fn series_differ_without_colour() {
+        for (kind, mark) in [("lineChart", "prstDash val="), ("areaChart", "pattFill prst=")] {
+            let xml = finished(&part(kind, &series(6)), &ChartFinish::default());
+            let looks: std::collections::BTreeSet<_> =
+                xml.split(mark).skip(1).map(|rest| rest.split('"').nth(1)).collect();
+            // Of areas one is plain.
+            assert_eq!(looks.len(), if kind == "lineChart" { 6 } else { 5 }, "{xml}");
+        }
+        let finish = ChartFinish { markers: true, ..ChartFinish::default() };
+        let xml = finished(&part("lineChart", &series(2)), &finish);
+        assert!(xml.contains("symbol val=\"circle\"") && xml.contains("symbol val=\"square\""), "{xml}");
+        assert!(xml.contains("<c:autoTitleDeleted val=\"1\"/>") && !xml.contains("<c:title>"), "{xml}");
+    }
+
+    #[test]
+    fn other_parts_and_bad_titles_are_refused() {
+        assert!(finish_chart(b"<c:drawing/>", &ChartFinish::default()).is_err());
+        let finish = ChartFinish { title: Some("\u{1}".to_owned()), ..ChartFinish::default() };
+        let error = finish_chart(part("barChart", "").as_bytes(), &finish).unwrap_err();
+        assert_eq!(error.problems()[0].code, "text-characters");
+    }
 }

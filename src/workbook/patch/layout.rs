@@ -4,7 +4,7 @@ use std::borrow::Cow;
 use std::collections::{BTreeMap, BTreeSet};
 use std::ops::Range as Span;
 
-use super::{CellWrite, problem, range_holds};
+use super::{CellWrite, problem};
 use crate::problem::{Problem, Result};
 use crate::references::{Cell, MAX_COLUMNS, MAX_ROWS, Range, shift};
 use crate::splice::{Kind, Token, Tokens, attribute, bad_xml, local, prefix};
@@ -104,7 +104,7 @@ impl<'a> Layout<'a> {
     /// Does a formula give this cell its value?
     pub(super) fn gives_a_value(&self, at: Cell) -> bool {
         self.cells.get(&at).is_some_and(|found| found.formula)
-            || self.blocks.iter().any(|(range, block)| *block != Block::Merged && range_holds(range, at))
+            || self.blocks.iter().any(|(range, block)| *block != Block::Merged && range.contains(at))
     }
 }
 
@@ -373,7 +373,7 @@ impl<'a, 'w> Pass<'a, 'w> {
             return Err(bad_xml(format!("{range} is no range of cells")));
         };
         let mut between = self.writes.range(range.first..=range.last);
-        if between.any(|(at, _)| range_holds(&range, *at)) {
+        if between.any(|(at, _)| range.contains(*at)) {
             self.layout.blocks.push((range, block));
         }
         Ok(())
@@ -416,9 +416,6 @@ pub(super) fn widened_spans(tag: &str, first: u32, last: u32) -> Result<Option<S
 pub(super) fn widened_dimension(tag: &str, cells: impl Iterator<Item = Cell>) -> Result<Option<String>> {
     let old = attribute(tag, "ref")?;
     let Some(old) = old.and_then(|old| old.parse::<Range>().ok()) else { return Ok(None) };
-    let wider = cells.fold(old, |range, at| Range {
-        first: Cell { row: range.first.row.min(at.row), col: range.first.col.min(at.col) },
-        last: Cell { row: range.last.row.max(at.row), col: range.last.col.max(at.col) },
-    });
+    let wider = cells.fold(old, |range, at| range.hull(&Range::cell(at)));
     Ok((wider != old).then(|| wider.to_string()))
 }

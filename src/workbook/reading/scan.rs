@@ -56,8 +56,10 @@ pub(super) fn scan(part: &str, xml: &[u8], wanted: impl Fn(Cell) -> bool) -> Res
                     }
                     b"c" => {
                         let at = cursor.cell(part, tag)?;
-                        let raw =
-                            Raw { kind: attribute(part, tag, "t")?.unwrap_or_default(), ..Raw::default() };
+                        let mut raw = Raw::default();
+                        if wanted(at) {
+                            raw.kind = attribute(part, tag, "t")?.unwrap_or_default();
+                        }
                         if !empty {
                             open = Some((at, raw));
                         } else if wanted(at) {

@@ -59,7 +59,7 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
             match number(content, Place::cells(&named.at.sheet, one(*cell)).called(&name)) {
                 Ok(value) => raw.push(value.unwrap_or(0.0)),
                 Err(problem) => {
-                    context.report(problem);
+                    context.report(*problem);
                     raw.push(0.0);
                 }
             }

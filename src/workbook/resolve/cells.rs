@@ -4,46 +4,47 @@ use crate::problem::{Place, Problem};
 use crate::reading::{Grid, ReadCell, Value};
 use crate::references::{Cell, Range, SheetRange};
 
-use super::Context;
 use super::find::Named;
+use super::{Checked, Context};
 
 /// The number in a cell, or nothing where it is blank; else what is wrong with it.
-pub(super) fn number(cell: &ReadCell, place: Place) -> Result<Option<f64>, Problem> {
-    if cell.lacks_result() {
-        return Err(Problem::error("no-result", place, "the formula has no stored result")
-            .hint("open the workbook in a spreadsheet program, recalculate and save it"));
-    }
-    match &cell.value {
-        Value::Blank => Ok(None),
-        Value::Number(number) => Ok(Some(*number)),
-        Value::Text(text) if text_as_number(text).is_some() => Err(Problem::error(
+pub(super) fn number(cell: &ReadCell, place: Place) -> Checked<Option<f64>> {
+    let problem = match &cell.value {
+        Value::Blank if cell.lacks_result() => {
+            Problem::error("no-result", place, "the formula has no stored result")
+                .hint("open the workbook in a spreadsheet program, recalculate and save it")
+        }
+        Value::Blank => return Ok(None),
+        Value::Number(number) => return Ok(Some(*number)),
+        Value::Text(text) if text_as_number(text).is_some() => Problem::error(
             "text-number",
             place,
             format!("looks like a number, but the cell stores the text `{}`", shown(text)),
         )
-        .hint("give the cell a number format and enter the number again")),
+        .hint("give the cell a number format and enter the number again"),
         Value::Text(text) => {
             let what = if text.trim().is_empty() { "an empty text" } else { "the text" };
-            Err(Problem::error(
+            Problem::error(
                 "text-value",
                 place,
                 format!("holds {what} `{}`, allowed is a number or a blank", shown(text)),
             )
-            .hint("enter a number, or clear the cell: a blank counts as 0"))
+            .hint("enter a number, or clear the cell: a blank counts as 0")
         }
         Value::Bool(truth) => {
             let word = if *truth { "TRUE" } else { "FALSE" };
-            Err(Problem::error("logical-value", place, format!("holds {word}, allowed is a number"))
-                .hint("enter a number"))
+            Problem::error("logical-value", place, format!("holds {word}, allowed is a number"))
+                .hint("enter a number")
         }
-        Value::Error(error) => Err(error_value(error, place)),
-        Value::Date(serial) => Err(Problem::error(
+        Value::Error(error) => error_value(error, place),
+        Value::Date(serial) => Problem::error(
             "date-value",
             place,
             format!("holds a date (stored {serial}), allowed is a number"),
         )
-        .hint("give the cell a number format, or name other cells")),
-    }
+        .hint("give the cell a number format, or name other cells"),
+    };
+    Err(problem.into())
 }
 
 /// A cell that shows an error value.
@@ -73,7 +74,7 @@ pub(super) fn numbers(context: &mut Context, grid: &Grid, called: &str) -> Numbe
             }
             Err(problem) => {
                 read.values.push(0.0);
-                context.report(problem);
+                context.report(*problem);
             }
         }
     }
@@ -97,7 +98,7 @@ pub(super) fn single(context: &mut Context, named: &Named) -> Option<ReadCell> {
     let cell = grid.get(named.at.range.first).cloned().unwrap_or_default();
     if cell.lacks_result() {
         if let Err(problem) = number(&cell, named.place()) {
-            context.report(problem);
+            context.report(*problem);
         }
         return None;
     }
@@ -130,7 +131,7 @@ pub(super) fn shown(text: &str) -> String {
 }
 
 /// The number that a person would read in a text: `1,200`, `£3.5`, `(4)`, `20%`, `7 `.
-pub(crate) fn text_as_number(text: &str) -> Option<f64> {
+pub(super) fn text_as_number(text: &str) -> Option<f64> {
     let text = text.trim().trim_start_matches('\'');
     let bracketed = text.strip_prefix('(').and_then(|rest| rest.strip_suffix(')'));
     let (text, sign) = bracketed.map_or((text, 1.0), |inner| (inner, -1.0));

@@ -1,5 +1,7 @@
 //! Nothing counts twice: overlapping names, and a stream named beside its own total.
 
+use std::collections::BTreeSet;
+
 use crate::appraisal::{Choice, Direction};
 use crate::problem::{Place, Problem};
 use crate::references::{Cell, SheetRange, Token, tokens};
@@ -10,13 +12,13 @@ use super::years::direction;
 
 /// How far sums of sums are followed.
 const DEPTH: usize = 4;
-/// A sum over more cells than this is not followed into each of them.
-const FOLLOWED: u64 = 400;
+/// A sum over more cells than this is not followed, nor are more ranges of one stream.
+const FOLLOWED: usize = 400;
 
 /// The cells that a formula adds up (or subtracts), where it does nothing else.
 ///
 /// `SUM(B5:B7)`, `B5+B7`, `SUBTOTAL(9,B5:B7)`; nothing for `B5*1.1`, which is a flow of its own.
-pub(super) fn sum_of(formula: &str, sheet: &str) -> Option<Vec<SheetRange>> {
+pub(crate) fn sum_of(formula: &str, sheet: &str) -> Option<Vec<SheetRange>> {
     let mut parts = Vec::new();
     let mut code = false; // the next number is the function code of SUBTOTAL
     for spanned in tokens(formula) {
@@ -58,16 +60,18 @@ pub(super) fn check(context: &mut Context, choice: &Choice) {
             }
         }
     }
-    for stream in &choice.streams {
-        for other in &choice.streams {
-            if stream.at == other.at {
-                continue;
-            }
-            match holds(context, &stream.at, &other.at) {
+    let ranges: Vec<&SheetRange> = choice.streams.iter().map(|stream| &stream.at).collect();
+    let reached = reached(context, &ranges);
+    for (stream, reached) in choice.streams.iter().zip(&reached) {
+        for other in choice.streams.iter().filter(|other| other.at != stream.at) {
+            let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+            let through =
+                reached.iter().filter(|(at, _)| overlap(at, &other.at)).map(|(_, adds)| *adds).max();
+            match through {
                 Some(true) => context.report(
                     Problem::error(
                         "double-count",
-                        Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
+                        place,
                         format!(
                             "is a total that holds {} [{}], whose flows would count twice",
                             other.at, other.from
@@ -78,7 +82,7 @@ pub(super) fn check(context: &mut Context, choice: &Choice) {
                 Some(false) => context.report(
                     Problem::warning(
                         "linked-streams",
-                        Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
+                        place,
                         format!("only repeats {} [{}]", other.at, other.from),
                     )
                     .hint("check that the same flows are meant on both sides; else name one of the two"),
@@ -89,46 +93,50 @@ pub(super) fn check(context: &mut Context, choice: &Choice) {
     }
 }
 
-/// Whether the cells of `whole` are sums that hold those of `part`: true for a sum, false for a plain link.
-///
-/// The first cell of `whole` with a formula stands for the row, as rows are filled to the side.
-fn holds(context: &mut Context, whole: &SheetRange, part: &SheetRange) -> Option<bool> {
-    let grid = context.grid(whole)?;
-    let (at, formula) = grid.iter().find_map(|(cell, content)| Some((cell, content.formula.clone()?)))?;
-    reaches(context, &whole.sheet, at, &formula, part, DEPTH)
-}
+/// A formula under way: which range it belongs to, its sheet and text, and whether anything was added so far.
+type Step = (usize, String, String, bool);
 
-fn reaches(
-    context: &mut Context,
-    sheet: &str,
-    at: Cell,
-    formula: &str,
-    part: &SheetRange,
-    depth: usize,
-) -> Option<bool> {
-    let parts = sum_of(formula, sheet)?;
-    let adds = parts.len() > 1 || parts[0].range.len() > 1;
-    if parts.iter().any(|found| overlap(found, part)) {
-        return Some(adds);
+/// What the cells of each range add up, directly or through other sums: true where a sum stands between, false
+/// for a plain link.
+///
+/// The first cell of a range that holds a formula stands for all of them, as rows are filled to the side.
+/// All ranges are followed together, so that each depth reads each sheet once.
+fn reached(context: &mut Context, ranges: &[&SheetRange]) -> Vec<BTreeSet<(SheetRange, bool)>> {
+    let mut reached = vec![BTreeSet::new(); ranges.len()];
+    let mut steps: Vec<Step> = Vec::new();
+    for (i, range) in ranges.iter().enumerate() {
+        let formulas = formulas(context, range);
+        steps.extend(formulas.into_iter().take(1).map(|text| (i, range.sheet.clone(), text, false)));
     }
-    let cells: u64 = parts.iter().map(|found| found.range.len()).sum();
-    if depth == 0 || cells > FOLLOWED {
-        return None;
-    }
-    for found in parts {
-        let Some(grid) = known(context, &found).then(|| context.grid(&found)).flatten() else { continue };
-        let inner: Vec<(Cell, String)> =
-            grid.iter().filter_map(|(cell, content)| Some((cell, content.formula.clone()?))).collect();
-        for (cell, text) in inner {
-            if cell == at && found.sheet == sheet {
-                continue;
-            }
-            if let Some(sums) = reaches(context, &found.sheet, cell, &text, part, depth - 1) {
-                return Some(adds || sums);
+    for _ in 0..DEPTH {
+        let mut next: Vec<(usize, SheetRange, bool)> = Vec::new();
+        for (i, sheet, text, added) in steps.drain(..) {
+            let parts = sum_of(&text, &sheet).unwrap_or_default();
+            let adds = added || parts.len() > 1 || parts.iter().any(|part| part.range.len() > 1);
+            for part in parts {
+                let new = reached[i].len() < FOLLOWED && reached[i].insert((part.clone(), adds));
+                if new && part.range.len() <= FOLLOWED as u64 && known(context, &part) {
+                    next.push((i, part, adds));
+                }
             }
         }
+        let wanted: Vec<SheetRange> = next.iter().map(|(_, part, _)| part.clone()).collect();
+        // What is wrong with cells that only lie between is no matter of the appraisal.
+        if wanted.is_empty() || context.sheets.load(&wanted).is_err() {
+            break;
+        }
+        for (i, part, adds) in next {
+            let formulas = formulas(context, &part);
+            steps.extend(formulas.into_iter().map(|text| (i, part.sheet.clone(), text, adds)));
+        }
     }
-    None
+    reached
+}
+
+/// The formulas of a range, in order.
+fn formulas(context: &mut Context, at: &SheetRange) -> Vec<String> {
+    let grid = context.sheets.range(at).ok();
+    grid.iter().flat_map(|grid| grid.iter()).filter_map(|(_, cell)| cell.formula.clone()).collect()
 }
 
 /// Whether the sheet exists; a formula may name one that was deleted.

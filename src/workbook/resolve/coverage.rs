@@ -15,6 +15,8 @@ use super::{Context, note};
 
 /// Rows that are listed, at most; a sheet of data can hold a million.
 const MAX_ROWS_LISTED: usize = 5_000;
+/// Rows of one sheet that are looked at, at most.
+const MAX_ROWS_SEEN: usize = 100_000;
 
 /// A stretch of columns (or rows) of a sheet that years stand over.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -142,6 +144,9 @@ fn lines(context: &mut Context, sheet: &str, band: Band) -> crate::problem::Resu
     let mut lines: BTreeMap<u32, Line> = BTreeMap::new();
     context.sheets.visit(sheet, |cell, value| {
         let (index, across) = band.turned(cell);
+        if lines.len() >= MAX_ROWS_SEEN && !lines.contains_key(&index) {
+            return;
+        }
         match value {
             Value::Number(number) if number.is_finite() && (band.first..=band.last).contains(&across) => {
                 let line = lines.entry(index).or_default();
@@ -149,9 +154,9 @@ fn lines(context: &mut Context, sheet: &str, band: Band) -> crate::problem::Resu
             }
             Value::Text(text) if across < band.first => {
                 let line = lines.entry(index).or_default();
-                // The nearest text that reads like a word; units and marks only where there is no other.
+                // The first text that reads like a word: units stand after the label; marks only where there is no other.
                 let is_word = text.chars().filter(|c| c.is_alphabetic()).count() >= 3;
-                if is_word || !line.heading_is_word {
+                if !line.heading_is_word {
                     line.heading = text.split_whitespace().collect::<Vec<_>>().join(" ");
                     line.heading_is_word = is_word;
                 }

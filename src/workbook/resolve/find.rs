@@ -6,7 +6,7 @@ use crate::reading::MAX_CELLS;
 use crate::references::{MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange};
 use crate::roles::{self, Role, RoleName, Status, Way};
 
-use super::Context;
+use super::{Checked, Context};
 
 /// A role with its cells.
 #[derive(Clone, Debug, PartialEq)]
@@ -39,7 +39,7 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
     for (role, range) in given {
         match from_command_line(context, role, range) {
             Ok(named) => found.push(named),
-            Err(problem) => context.report(problem),
+            Err(problem) => context.report(*problem),
         }
     }
     let book = context.book;
@@ -64,7 +64,7 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
             Ok(at) => {
                 found.push(Named { name, from: defined.name.clone(), at, scope: scope(context, defined) })
             }
-            Err(problem) => context.report(problem),
+            Err(problem) => context.report(*problem),
         }
     }
     let mut kept = Vec::new();
@@ -75,6 +75,10 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
             None => kept.push(named),
         }
     }
+    // Programs write names in orders of their own; that of the cells is the analyst's.
+    kept.sort_by_cached_key(|named| {
+        (context.book.sheet_index(&named.at.sheet), named.at.range, named.name.role, named.from.clone())
+    });
     kept
 }
 
@@ -113,17 +117,17 @@ fn beaten(found: &[Named], name: &RoleName, count: usize) -> bool {
     })
 }
 
-fn from_command_line(context: &Context, role: &str, range: &str) -> Result<Named, Problem> {
+fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Named> {
     let from = format!("--role {role}");
     let place = Place::name(&from);
     let name = roles::parse_role(role).map_err(|slip| {
         Problem::error("unknown-role", place.clone(), slip).hint("`hence names --help` lists the roles")
     })?;
     if name.role.info().way == Way::Own {
-        return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given"));
+        return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given").into());
     }
     if let Some(problem) = later(&name, place.clone()) {
-        return Err(problem);
+        return Err(problem.into());
     }
     if let Ok(at) = range.parse::<SheetRange>()
         && let Some(sheet) = context.book.sheets.iter().find(|sheet| same_text(&sheet.name, &at.sheet))
@@ -148,7 +152,8 @@ fn from_command_line(context: &Context, role: &str, range: &str) -> Result<Named
             place,
             format!("`{range}` is neither cells of this workbook nor one of its names"),
         )
-        .hint("write the cells as Sheet1!C7:F7, or 'My sheet'!C7:F7"));
+        .hint("write the cells as Sheet1!C7:F7, or 'My sheet'!C7:F7")
+        .into());
     };
     Ok(Named { name, from, at: cells(context, defined)?, scope: None })
 }
@@ -158,9 +163,9 @@ fn same_text(a: &str, b: &str) -> bool {
 }
 
 /// The one rectangle a name refers to, or why it has none.
-pub(super) fn cells(context: &Context, defined: &DefinedName) -> Result<SheetRange, Problem> {
+pub(super) fn cells(context: &Context, defined: &DefinedName) -> Checked<SheetRange> {
     let refuse = |code, message: String, hint: &str| {
-        Err(Problem::error(code, Place::name(&defined.name), message).hint(hint))
+        Err(Problem::error(code, Place::name(&defined.name), message).hint(hint).into())
     };
     let again = "let the name refer to one range of cells with $ signs, such as Sheet1!$C$7:$F$7";
     match context.book.resolve(defined) {

@@ -15,6 +15,7 @@ mod texts;
 mod years;
 
 use std::collections::{BTreeMap, BTreeSet};
+use std::rc::Rc;
 
 use crate::appraisal::Appraisal;
 use crate::model::{SheetFacts, Workbook};
@@ -23,7 +24,7 @@ use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
 use crate::reading::{Grid, Sheets};
 use crate::references::{Range, SheetRange};
 
-pub(crate) use cells::text_as_number;
+pub(crate) use counted::sum_of;
 pub use report::{Found, NamesReport, names};
 
 /// What the run was told besides the workbook.
@@ -75,7 +76,7 @@ struct Context<'a> {
     package: &'a Package,
     book: &'a Workbook,
     sheets: Sheets<'a>,
-    facts: BTreeMap<String, SheetFacts>,
+    facts: BTreeMap<String, Rc<SheetFacts>>,
     problems: Vec<Problem>,
 }
 
@@ -92,13 +93,14 @@ impl<'a> Context<'a> {
     }
 
     /// What a sheet holds besides values; nothing where it cannot be read, which is reported.
-    fn facts(&mut self, sheet: &str) -> Option<SheetFacts> {
+    fn facts(&mut self, sheet: &str) -> Option<Rc<SheetFacts>> {
         if let Some(facts) = self.facts.get(sheet) {
             return Some(facts.clone());
         }
         match self.book.facts(self.package, self.book.sheet_index(sheet)?) {
             Ok(facts) => {
-                self.facts.insert(sheet.to_owned(), facts.clone());
+                let facts = Rc::new(facts);
+                self.facts.insert(sheet.to_owned(), Rc::clone(&facts));
                 Some(facts)
             }
             Err(error) => {
@@ -146,6 +148,9 @@ impl<'a> Context<'a> {
         merge_neighbours(problems)
     }
 }
+
+/// What a check gives: a value, or the one problem that was found.
+type Checked<T> = std::result::Result<T, Box<Problem>>;
 
 /// Something worth knowing that changes nothing.
 fn note(code: &'static str, place: Place, message: impl Into<String>) -> Problem {

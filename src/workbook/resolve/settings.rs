@@ -250,7 +250,7 @@ fn amount(context: &mut Context, named: &Named) -> Option<f64> {
             None
         }
         Err(problem) => {
-            context.report(problem);
+            context.report(*problem);
             None
         }
     }

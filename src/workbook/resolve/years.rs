@@ -11,7 +11,7 @@ use crate::roles::Role;
 
 use super::cells::{error_value, number, one, shown, single, text_as_number};
 use super::find::Named;
-use super::{Context, texts};
+use super::{Checked, Context, texts};
 
 /// The longest row of years: calendar years run from 1000 to 9999.
 const MAX_YEARS: u64 = 9_000;
@@ -42,8 +42,7 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
     };
     let grid = context.grid(&named.at)?;
     let date1904 = context.book.date1904;
-    let before = context.problems.len();
-    let mut labels: Vec<Label> = Vec::new();
+    let mut labels: Vec<Option<Label>> = Vec::new();
     for (cell, content) in grid.iter() {
         let place = Place::cells(&named.at.sheet, one(cell)).called(&named.from);
         let read = if named.name.role == Role::Offsets {
@@ -53,54 +52,60 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
         };
         match read {
             Ok(label) => {
-                if let Some(problem) = labels.last().and_then(|last| step(last, &label, place)) {
+                let last = labels.last().and_then(Option::as_ref);
+                if let Some(problem) = last.and_then(|last| step(last, &label, place)) {
                     context.report(problem);
                 }
-                labels.push(label);
+                labels.push(Some(label));
             }
-            Err(problem) => context.report(problem),
+            Err(problem) => {
+                context.report(*problem);
+                labels.push(None);
+            }
         }
     }
-    let whole = !context.problems[before..].iter().any(|p| p.severity == crate::problem::Severity::Error);
-    whole.then(|| Axis { at: named.at.clone(), direction, labels })
+    // A faulty year ends the run, but not before the flows beside it are checked too.
+    let any = labels.iter().flatten().next()?.clone();
+    let labels = labels.into_iter().map(|label| label.unwrap_or_else(|| any.clone())).collect();
+    Some(Axis { at: named.at.clone(), direction, labels })
 }
 
 /// One cell of the years.
-fn label(content: &ReadCell, date1904: bool, place: Place) -> Result<Label, Problem> {
-    let wrong =
-        |message: String, hint: &str| Err(Problem::error("years-value", place.clone(), message).hint(hint));
-    match &content.value {
-        Value::Blank if content.lacks_result() => number(content, place).map(|_| Label::Number(0)),
-        Value::Blank => Err(Problem::error("years-blank", place, "is blank among the years")
-            .hint("enter the year, or let the name end before the blank")),
-        Value::Number(number) => whole_year(*number).ok_or(()).or_else(|()| {
-            let hint = if (20_000.0..80_000.0).contains(number) {
-                "give the cell a date format if it is a date"
-            } else {
-                "enter a calendar year from 1000 to 9999, or a year number below 1000"
-            };
-            wrong(format!("is {number}, and a year is a whole number up to 9999"), hint)
-        }),
+fn label(content: &ReadCell, date1904: bool, place: Place) -> Checked<Label> {
+    let wrong = |message: String| Problem::error("years-value", place.clone(), message);
+    let problem = match &content.value {
+        Value::Blank if content.lacks_result() => return number(content, place).map(|_| Label::Number(0)),
+        Value::Blank => Problem::error("years-blank", place, "is blank among the years")
+            .hint("enter the year, or let the name end before the blank"),
+        Value::Number(number) => match whole_year(*number) {
+            Some(label) => return Ok(label),
+            None => wrong(format!("is {number}, and a year is a whole number up to 9999")).hint(
+                if (20_000.0..80_000.0).contains(number) {
+                    "give the cell a date format if it is a date"
+                } else {
+                    "enter a calendar year from 1000 to 9999, or a year number below 1000"
+                },
+            ),
+        },
         Value::Date(serial) => match date(*serial, date1904) {
-            Some(date) => Ok(Label::Date(date)),
-            None => wrong(format!("is no date (stored {serial})"), "enter a date with its year"),
+            Some(date) => return Ok(Label::Date(date)),
+            None => wrong(format!("is no date (stored {serial})")).hint("enter a date with its year"),
         },
         Value::Text(text) => match parse_financial_year(text.trim()) {
-            Ok(year) => Ok(Label::Financial(year, text.trim().to_owned())),
-            Err(_) if text_as_number(text).is_some() => Err(Problem::error(
+            Ok(year) => return Ok(Label::Financial(year, text.trim().to_owned())),
+            Err(_) if text_as_number(text).is_some() => Problem::error(
                 "text-number",
                 place,
                 format!("looks like a year, but the cell stores the text `{}`", shown(text)),
             )
-            .hint("give the cell a number format and enter the year again")),
-            Err(_) => wrong(
-                format!("holds the text `{}`, which is no year", shown(text)),
-                "enter a calendar year, a financial year such as 2025/26, a year number or a date",
-            ),
+            .hint("give the cell a number format and enter the year again"),
+            Err(_) => wrong(format!("holds the text `{}`, which is no year", shown(text)))
+                .hint("enter a calendar year, a financial year such as 2025/26, a year number or a date"),
         },
-        Value::Error(error) => Err(error_value(error, place)),
-        Value::Bool(_) => wrong("holds a logical value".to_owned(), "enter a year"),
-    }
+        Value::Error(error) => error_value(error, place),
+        Value::Bool(_) => wrong("holds a logical value".to_owned()).hint("enter a year"),
+    };
+    Err(problem.into())
 }
 
 /// A calendar year or a year number, where the number is one.
@@ -110,11 +115,12 @@ fn whole_year(number: f64) -> Option<Label> {
     whole.then_some(number as i32).map(|n| if n >= 1000 { Label::Year(n) } else { Label::Number(n) })
 }
 
-fn offset(content: &ReadCell, place: Place) -> Result<Label, Problem> {
+fn offset(content: &ReadCell, place: Place) -> Checked<Label> {
     match number(content, place.clone())? {
         Some(offset) => Ok(Label::Offset(offset)),
         None => Err(Problem::error("years-blank", place, "is blank among the offsets")
-            .hint("enter the offset in years from the base, or let the name end before the blank")),
+            .hint("enter the offset in years from the base, or let the name end before the blank")
+            .into()),
     }
 }
 
@@ -214,7 +220,7 @@ pub(super) fn base(context: &mut Context, named: Option<&Named>, axis: &Axis) ->
         Err(problem) => {
             context.report(Problem {
                 code: if problem.code == "years-value" { "base-value" } else { problem.code },
-                ..problem
+                ..*problem
             });
             return None;
         }
@@ -238,6 +244,17 @@ pub(super) fn base(context: &mut Context, named: Option<&Named>, axis: &Axis) ->
         (Label::Financial(year, _), Label::Number(_) | Label::Offset(_)) => given(Base::Financial(*year)),
         (Label::Date(date), Label::Date(_) | Label::Number(_) | Label::Offset(_)) => given(Base::Date(*date)),
         (Label::Number(0), Label::Number(_) | Label::Offset(_)) => given(Base::Zero),
+        (Label::Number(n), Label::Number(_)) => {
+            context.report(
+                Problem::error(
+                    "base-years",
+                    named.place(),
+                    format!("is {n}, and year numbers count from 0 at the base"),
+                )
+                .hint("enter 0 or the calendar year of year 0, and let the years count from there"),
+            );
+            None
+        }
         _ => {
             context.report(
                 Problem::error(

@@ -112,7 +112,10 @@ fn bombs() -> Vec<Case> {
             Book::cell(ONE).part("xl/media/image1.png", blanks(200)).build()
         }),
         case("entry that grows a thousand times", Refused("zip-bomb", NONE), || {
-            Book::cell(ONE).part("xl/media/image1.png", blanks(100)).build()
+            Book::cell(ONE)
+                .part("xl/media/image1.png", blanks(100))
+                .entry("xl/media/image1.png", |entry| entry.level = 9)
+                .build()
         }),
         case("bomb that claims to be small", Refused("damaged-zip", NONE), || {
             Book::cell(ONE)

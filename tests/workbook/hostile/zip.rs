@@ -12,6 +12,8 @@ pub struct Entry {
     pub name: String,
     pub content: Vec<u8>,
     pub stored: bool,
+    /// How hard to pack.
+    pub level: u32,
     /// The size to claim instead of the true one.
     pub claim: Option<u32>,
     pub encrypted: bool,
@@ -29,6 +31,7 @@ impl Entry {
             name: name.to_owned(),
             content: content.into(),
             stored: false,
+            level: 1,
             claim: None,
             encrypted: false,
             descriptor: false,
@@ -55,7 +58,7 @@ pub fn archive(entries: &[Entry], wide_end: bool) -> Vec<u8> {
         let packed = if entry.stored {
             entry.content.clone()
         } else {
-            let mut encoder = DeflateEncoder::new(Vec::new(), Compression::fast());
+            let mut encoder = DeflateEncoder::new(Vec::new(), Compression::new(entry.level));
             encoder.write_all(&entry.content).unwrap();
             encoder.finish().unwrap()
         };

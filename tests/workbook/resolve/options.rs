@@ -101,6 +101,14 @@ fn a_result_without_an_option_is_refused_beside_options() {
 }
 
 #[test]
+fn the_order_of_names_in_the_file_does_not_matter() {
+    let list = ["hence_cost_works B5:D5", "hence_benefit_year B4:D4", "hence_npv B9", "hence_factor B7:D7"];
+    let read = |list: &[&str]| inputs().sheet("Pumps", OPTION).names(&list.join(",")).resolved();
+    let reversed: Vec<&str> = list.iter().rev().copied().collect();
+    assert_eq!(read(&list), read(&reversed));
+}
+
+#[test]
 fn the_baseline_is_named_by_its_option() {
     let own = "hence_damage_floods B5:D5, hence_npv B9";
     let two =
@@ -118,7 +126,7 @@ fn two_ranges_for_one_role_are_a_question() {
         .sheet("Flows", OPTION)
         .own_names("hence_cost_works B5:D5")
         .names("hence_cost_Works B4:D4, hence_npv B9");
-    assert_eq!(small.problems(), ["duplicate-role Flows!B4:D4 [hence_cost_Works]"]);
+    assert_eq!(small.problems(), ["duplicate-role Flows!B5:D5 [hence_cost_works]"]);
 }
 
 #[test]

@@ -20,6 +20,7 @@ fn targets_that_names_do_not_pin_down() {
         ("0.035", "name-constant"),
         ("\"3.5%\"", "name-constant"),
         ("Costs[Works]", "name-table"),
+        ("Plan:Plan!$B$7:$D$7", "name-sheets"),
     ] {
         let problems = plan("").raw_name("hence_annual", text).problems();
         let expected = format!("{code} [hence_annual]");
@@ -91,6 +92,37 @@ fn cells_that_cannot_be_written_one_by_one() {
 }
 
 #[test]
+fn formulas_that_fill_many_cells_are_not_overwritten() {
+    let array = plan("A9: 'NPV | =[t=\"array\" ref=\"B9:B10\"]B5:B6*1>1");
+    assert_eq!(array.problems(), ["target-array Plan!B9 [hence_npv]"]);
+    let table = plan("A9: 'NPV | =[t=\"dataTable\" ref=\"B9:B10\" dt2D=\"0\" dtr=\"0\" r1=\"B1\"]>1");
+    assert_eq!(table.problems(), ["target-data-table Plan!B9 [hence_npv]"]);
+}
+
+#[test]
+fn headers_and_totals_of_tables_are_not_overwritten() {
+    let table = "<table xmlns=\"http://schemas.openxmlformats.org/spreadsheetml/2006/main\" id=\"1\" name=\"Sums\" \
+                 displayName=\"Sums\" ref=\"A9:B12\" totalsRowCount=\"1\"><tableColumns count=\"2\">\
+                 <tableColumn id=\"1\" name=\"NPV\"/><tableColumn id=\"2\" name=\"x\"/></tableColumns></table>";
+    let small = |npv: &str| {
+        named("A9: 'NPV | 'x", &format!("hence_npv {npv}"))
+            .after_cells("<tableParts count=\"1\"><tablePart r:id=\"rId1\"/></tableParts>")
+            .related("table", "tables/table1.xml", table)
+    };
+    assert_eq!(small("B9").problems(), ["target-table Plan!B9 [hence_npv]"]);
+    assert_eq!(small("B12").problems(), ["target-table Plan!B12 [hence_npv]"]);
+    assert_eq!(small("B10").problems(), [""; 0]);
+}
+
+#[test]
+fn cells_that_a_pivot_table_fills_are_not_overwritten() {
+    let pivot = "<pivotTableDefinition xmlns=\"http://schemas.openxmlformats.org/spreadsheetml/2006/main\" \
+                 name=\"p\" cacheId=\"1\"><location ref=\"A9:C12\"/></pivotTableDefinition>";
+    let small = plan("").related("pivotTable", "pivotTables/pivotTable1.xml", pivot);
+    assert_eq!(small.problems(), ["target-refreshed Plan!B9 [hence_npv]"]);
+}
+
+#[test]
 fn what_is_warned_of_and_filled_all_the_same() {
     let protected = plan("").after_cells("<sheetProtection sheet=\"1\"/>");
     assert_eq!(
@@ -101,6 +133,8 @@ fn what_is_warned_of_and_filled_all_the_same() {
                 <formula2>9</formula2></dataValidation></dataValidations>";
     assert_eq!(plan("").after_cells(rule).problems(), ["validation Plan!B9 [hence_npv]"]);
     assert_eq!(plan("A9: 'NPV | {2}").problems(), ["text-format Plan!B9 [hence_npv]"]);
+    let hidden = plan("").before_cells("<cols><col min=\"3\" max=\"3\" hidden=\"1\"/></cols>");
+    assert_eq!(hidden.problems(), ["hidden Plan!B7:D7 [hence_factor]"]);
     assert_eq!(Small::resolved(&protected).choices.len(), 1);
 }
 
