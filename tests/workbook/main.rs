@@ -2,6 +2,7 @@
 
 mod bare;
 mod codes;
+mod corpus;
 mod fill;
 mod formulas;
 mod graft;
@@ -11,7 +12,6 @@ mod model;
 mod names_edit;
 mod package;
 mod patch;
-mod preserve;
 mod readme;
 mod references;
 mod resolve;
@@ -21,4 +21,5 @@ mod sheets;
 mod small;
 mod stale;
 mod suggest;
+mod tools;
 mod verify;
