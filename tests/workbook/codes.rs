@@ -38,7 +38,7 @@ fn rust_files(folder: &Path, files: &mut Vec<PathBuf>) {
 
 fn read(path: &Path) -> File {
     let source = std::fs::read_to_string(path).expect("a source file is text");
-    let tokens = tokens::of_program(&source);
+    let tokens = with_constants(tokens::of_program(&source));
     let defined = definitions(&tokens);
     let name = path.strip_prefix(root()).unwrap_or(path).display().to_string();
     File { name, tokens, defined }
@@ -50,6 +50,21 @@ fn files() -> Vec<File> {
     rust_files(&root().join("src/workbook"), &mut paths);
     paths.sort();
     paths.iter().filter(|path| !path.ends_with("codes.rs")).map(|path| read(path)).collect()
+}
+
+/// The tokens with the names of the file's text constants replaced by their texts.
+fn with_constants(mut tokens: Vec<Token>) -> Vec<Token> {
+    let constant = |w: &[Token]| {
+        let declared = w[0].word() == Some("const") && w[4].word() == Some("str") && w[5].is('=');
+        declared.then(|| Some((w[1].word()?.to_owned(), w[6].piece.clone())))?
+    };
+    let constants: BTreeMap<String, Piece> = tokens.windows(7).filter_map(constant).collect();
+    for token in &mut tokens {
+        if let Some(text) = token.word().and_then(|word| constants.get(word)) {
+            token.piece = text.clone();
+        }
+    }
+    tokens
 }
 
 /// `fn name(.., code: &'static str, ..)` and `let name = |.., code, ..|`, and those that take no code.
@@ -97,7 +112,10 @@ fn codes_of(expression: &[Token]) -> Result<Vec<&str>, String> {
     let words: Vec<&str> = expression.iter().filter_map(Token::word).collect();
     match (texts.as_slice(), words.last()) {
         (&[], Some(&"code")) => Ok(Vec::new()), // handed on, or the code of an error of the library
-        (&[], _) => Err(format!("the code is given as `{}`, not as a literal", words.join(" "))),
+        (&[], _) => Err(format!(
+            "the code is given as `{}`, not as a literal or a constant of the file",
+            words.join(" ")
+        )),
         (texts, _) => match texts.iter().find(|text| !is_kebab(text)) {
             Some(text) => Err(format!("{text:?} is no code: lower-case words joined by hyphens")),
             None => Ok(texts.to_vec()),
@@ -229,11 +247,14 @@ fn the_table_is_grouped_sorted_and_worded() {
 
 #[test]
 fn codes_that_cannot_be_told_are_noticed() {
-    let source = "fn refuse(at: Cell, code: &'static str) {} fn f() { refuse(c, CONSTANT) }";
-    let tokens = tokens::of_program(source);
+    let source = "fn refuse(at: Cell, code: &'static str) {} fn f() { refuse(c, ELSEWHERE) }";
+    let tokens = with_constants(tokens::of_program(source));
     let call = tokens.iter().rposition(|token| token.word() == Some("refuse")).unwrap();
     let arguments = split(&tokens[call + 2..closing(&tokens, call + 1)]);
-    assert!(codes_of(arguments[1]).unwrap_err().contains("CONSTANT"));
+    assert!(codes_of(arguments[1]).unwrap_err().contains("ELSEWHERE"));
     assert_eq!(definitions(&tokens)["refuse"], BTreeSet::from([Some(1)]));
+    let known = format!("const ELSEWHERE: &str = \"a-code\"; {source}");
+    let tokens = with_constants(tokens::of_program(&known));
+    assert_eq!(codes_of(&tokens[tokens.len() - 3..tokens.len() - 2]), Ok(vec!["a-code"]));
     assert!(codes_of(&[Token { piece: Piece::Text("Not a code".to_owned()), line: 1 }]).is_err());
 }

@@ -35,7 +35,7 @@ fn role_row(info: &RoleInfo) -> String {
     let way = match info.way {
         Way::In => "in",
         Way::Out => "out",
-        Way::Own => "hence's",
+        _ => "hence's",
     };
     // The reason alone: what to do instead is in the message.
     let why = |reason: &'static str| reason.split(':').next().unwrap_or(reason);
