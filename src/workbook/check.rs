@@ -1,7 +1,5 @@
 //! What a workbook holds in its targets against what its declared basis gives.
 
-use std::path::Path;
-
 use hence_core::Catalogue;
 
 use crate::appraisal::{Held, Target};
@@ -10,7 +8,7 @@ use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::patch::Cached;
-use crate::plan::{span, words};
+use crate::plan::{same_text, span, words};
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, Severity};
 use crate::references::SheetRange;
@@ -60,15 +58,14 @@ impl CheckReport {
     }
 }
 
-/// Checks one workbook file; nothing is written.
+/// Checks one workbook; nothing is written.
 ///
 /// # Errors
 /// Everything that keeps the workbook from being read and valued, each with its cell.
-pub fn check_file(path: &Path, roles: &[(String, String)], catalogue: &Catalogue) -> Result<CheckReport> {
-    let package = Package::open(path)?;
-    let mut problems = preflight(&package)?;
-    let book = Workbook::read(&package)?;
-    let mut appraisal = resolve(&package, &book, &Options { roles, basis: None })?;
+pub fn check(package: &Package, roles: &[(String, String)], catalogue: &Catalogue) -> Result<CheckReport> {
+    let mut problems = preflight(package)?;
+    let book = Workbook::read(package)?;
+    let mut appraisal = resolve(package, &book, &Options { roles, basis: None })?;
     problems.append(&mut appraisal.problems);
     let (outcomes, found) = value(&appraisal, catalogue)?;
     problems.extend(found);
@@ -83,6 +80,10 @@ pub fn check_file(path: &Path, roles: &[(String, String)], catalogue: &Catalogue
     Ok(report)
 }
 
+fn number(result: &Cached) -> Option<f64> {
+    if let Cached::Number(x) = result { Some(*x) } else { None }
+}
+
 impl CheckReport {
     fn target(&mut self, target: &Target, results: &[Cached]) {
         let mut blank = Vec::new();
@@ -91,7 +92,7 @@ impl CheckReport {
             let at = cell_of(&target.at, i);
             match (held, result) {
                 (Held::Blank, _) => blank.push(at),
-                (Held::Formula { value: None, text: _ }, Cached::Number(_)) => waiting.push(at),
+                (Held::Formula { value: None, shown: None, .. }, _) => waiting.push(at),
                 (Held::Number(found) | Held::Formula { value: Some(found), .. }, Cached::Number(x)) => {
                     if (found - x).abs() <= tolerance::of_cell(target, i, *x) {
                         self.agree += 1;
@@ -99,10 +100,15 @@ impl CheckReport {
                         self.differ(target, &at, found.to_string(), Some(*x), Some(found - x));
                     }
                 }
-                (Held::Text(found), Cached::Text(text)) if found == text => self.agree += 1,
-                (Held::Formula { value: None, .. }, _) => self.agree += 1,
-                (held, Cached::Number(x)) => self.differ(target, &at, words(held), Some(*x), None),
-                (held, _) => self.differ(target, &at, words(held), None, None),
+                (Held::Text(found) | Held::Formula { shown: Some(found), .. }, Cached::Text(text))
+                    if same_text(found, text) =>
+                {
+                    self.agree += 1;
+                }
+                (Held::Formula { shown: Some(found), .. }, result) => {
+                    self.differ(target, &at, found.clone(), number(result), None);
+                }
+                (held, result) => self.differ(target, &at, words(held), number(result), None),
             }
         }
         if let Some(place) = span(&blank) {

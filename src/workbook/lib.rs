@@ -5,12 +5,16 @@
 
 pub mod appraisal;
 pub mod check;
+mod clock;
+pub mod codes;
 pub mod fill;
 pub mod formulas;
 pub mod graft;
 pub mod layout;
+mod measuring;
 pub mod model;
 pub mod names_edit;
+pub mod naming;
 pub mod outcome;
 mod own;
 pub mod package;
@@ -27,6 +31,7 @@ pub mod schedules;
 pub mod sheets;
 mod splice;
 pub mod stale;
+pub mod start;
 pub mod styles;
 pub mod suggest;
 pub mod tolerance;

@@ -1,6 +1,8 @@
 //! The workbook crate from outside: real, small and hostile workbooks.
 
 mod bare;
+mod codes;
+mod corpus;
 mod fill;
 mod formulas;
 mod graft;
@@ -11,7 +13,7 @@ mod names_edit;
 mod own;
 mod package;
 mod patch;
-mod preserve;
+mod readme;
 mod references;
 mod resolve;
 mod roles;
@@ -20,4 +22,5 @@ mod sheets;
 mod small;
 mod stale;
 mod suggest;
+mod tools;
 mod verify;

@@ -287,6 +287,8 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
         },
         increment: None,
         irr: Vec::new(),
+        irr_unresolved: Vec::new(),
+        endless: false,
         payback: Payback { first: Some(6.5), last: Some(6.5) },
         mean_time: Some(17.0),
         era_shares: vec![0.8, 0.2, 0.0],

@@ -372,8 +372,8 @@ impl<'a> Maker<'a> {
         let years = outcome.service_years;
         let what = format!("Sum of factors of service years 1 to {years}");
         let block = self.rebuilt(c);
-        let text = block.annuity_formula(years).unwrap_or_default();
-        let annuity = live(text, block.annuity(years));
+        let text = block.annuity_formula().unwrap_or_default();
+        let annuity = live(text, block.annuity());
         add(next, rows.annuity, &what, outcome.annuity, tolerance(outcome.annuity), annuity);
         if let Some((_, line)) = lines.last_mut() {
             line.style = Style::Factor;
@@ -408,6 +408,7 @@ pub(super) fn held(held: &Held) -> Cached {
     match held {
         Held::Number(x) | Held::Formula { value: Some(x), .. } => Cached::Number(*x),
         Held::Text(text) => Cached::Text(text.clone()),
+        Held::Formula { shown: Some(shown), .. } if !shown.starts_with('#') => Cached::Text(shown.clone()),
         Held::Blank | Held::Error(_) | Held::Formula { value: None, .. } => Cached::None,
     }
 }

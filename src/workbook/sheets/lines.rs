@@ -132,7 +132,12 @@ impl Line {
         let mut worst = 0.0_f64;
         for live in self.rebuilt.iter().chain(&self.now) {
             let Cached::Number(x) = live.value else { return (None, false) };
-            let difference = if self.relative { (x / recorded - 1.0).abs() } else { (x - recorded).abs() };
+            let relative = self.relative && recorded != 0.0;
+            let difference = if relative { (x / recorded - 1.0).abs() } else { (x - recorded).abs() };
+            // `max` would pass over a difference that is no number.
+            if difference.is_nan() {
+                return (None, false);
+            }
             worst = worst.max(difference);
         }
         (worst.is_finite().then_some(worst), worst <= self.allowed)
@@ -184,7 +189,9 @@ impl Line {
         let terms: Vec<String> = terms
             .iter()
             .map(|x| {
-                if self.relative { format!("ABS({x}/{recorded}-1)") } else { format!("ABS({x}-{recorded})") }
+                // A factor too small for a number is recorded as 0.
+                let relative = self.relative && self.recorded.value != Cached::Number(0.0);
+                if relative { format!("ABS({x}/{recorded}-1)") } else { format!("ABS({x}-{recorded})") }
             })
             .collect();
         let text = match terms.as_slice() {

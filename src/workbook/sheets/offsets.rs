@@ -16,10 +16,15 @@ fn position(position: Position) -> f64 {
     }
 }
 
+/// What timing adds to the years between a flow and the base; an averaged flow counts at its year's end.
+pub(super) fn shift(timing: Timing) -> f64 {
+    position(timing.flows) - position(timing.base)
+}
+
 /// The offset of a label: (year - base year) + position of flows - position of base; for dates whole
 /// anniversaries plus days over the length of the part-year; a stated offset as it is.
 pub(super) fn rebuilt(label: &Label, base: &Base, timing: Timing) -> f64 {
-    let shift = position(timing.flows) - position(timing.base);
+    let shift = shift(timing);
     let from = f64::from(base_year(base).unwrap_or(0));
     match label {
         Label::Year(y) | Label::Financial(y, _) => f64::from(*y) - from + shift,
@@ -32,13 +37,13 @@ pub(super) fn rebuilt(label: &Label, base: &Base, timing: Timing) -> f64 {
     }
 }
 
+/// Anniversaries of the earlier of the two dates, and days over the length of the part-year.
 fn anniversaries(base: NaiveDate, date: NaiveDate) -> f64 {
+    if date < base {
+        return -anniversaries(date, base);
+    }
     let mut years = date.year() - base.year();
-    let at = |years: i32| {
-        let months = Months::new(12 * years.unsigned_abs());
-        let moved = if years < 0 { base.checked_sub_months(months) } else { base.checked_add_months(months) };
-        moved.unwrap_or(base)
-    };
+    let at = |years: i32| base.checked_add_months(Months::new(12 * years.unsigned_abs())).unwrap_or(base);
     if at(years) > date {
         years -= 1;
     }
@@ -55,7 +60,7 @@ pub(super) fn formula(
     timing: Timing,
     home: &str,
 ) -> String {
-    let shift = position(timing.flows) - position(timing.base);
+    let shift = shift(timing);
     let plus = if shift == 0.0 { String::new() } else { format!("+{}", constant(shift)) };
     let base_cell = choice.base.at.as_ref().map(|at| refer(home, at));
     let base = match (&choice.base.value, base_cell) {
@@ -113,5 +118,7 @@ mod tests {
         // 92 of the 366 days from 1 April 2027 to 1 April 2028.
         assert_eq!(offset(day(2026, 4, 1), day(2027, 7, 2)), 1.0 + 92.0 / 366.0);
         assert_eq!(offset(day(2026, 4, 1), day(2025, 4, 1)), -1.0);
+        // Before the base the earlier date's anniversaries count: 123 of the 366 days from 1 October 2023.
+        assert_eq!(offset(day(2024, 2, 1), day(2023, 10, 1)), -123.0 / 366.0);
     }
 }

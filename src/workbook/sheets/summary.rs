@@ -8,8 +8,9 @@ use super::discounting::table_ref;
 use super::lines::DIFFERS;
 use super::{AuditInput, charts::era_words};
 use crate::appraisal::{StreamKind, TargetRole};
-use crate::formulas::{no_ratio, one, refer};
+use crate::formulas::{ENDLESS_IRR, NO_IRR, no_ratio, one, refer};
 use crate::layout::{Column, Layout};
+use crate::outcome::ChoiceOutcome;
 use crate::patch::Cached;
 use crate::references::{Cell, Range, SheetRange};
 use crate::writer::{Sheet, Style};
@@ -52,7 +53,7 @@ pub(super) fn sheet(
     page.basis(input, layout);
     page.results(input, layout);
     page.checks(input, checks, coverage);
-    page.warnings(input, layout);
+    page.warnings(input);
     page.list("What differs in the file by design", input.differs);
     page.sheet.text(page.row, 0, Style::Section, "Notes of the reviewer (type below; kept at the next fill)");
     page.sheet.freeze(VERDICT + 1, 0);
@@ -167,7 +168,7 @@ impl Page {
         }
         self.row += 1;
         self.totals(input, layout);
-        self.measures(input, layout);
+        self.measures(input);
         self.row += 1;
         for choice in &input.appraisal.choices {
             let names = |wanted: &[StreamKind]| {
@@ -237,7 +238,7 @@ impl Page {
         }
     }
 
-    fn measures(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+    fn measures(&mut self, input: &AuditInput<'_>) {
         let each = |page: &mut Page, label: &str, put: &dyn Fn(&mut Sheet, u32, u32, usize)| {
             page.sheet.text(page.row, 0, Style::Wrapped, label);
             for c in 0..input.outcomes.len() {
@@ -259,10 +260,7 @@ impl Page {
             years(sheet, row, col, input.outcomes[c].payback.last, "none");
         });
         each(self, "Internal rates of return", &|sheet, row, col, c| {
-            let rates: Vec<String> =
-                input.outcomes[c].irr.iter().map(|r| format!("{:.4}%", r * 100.0)).collect();
-            let text = if rates.is_empty() { crate::formulas::NO_IRR.to_owned() } else { rates.join("; ") };
-            sheet.text(row, col, Style::Wrapped, text);
+            sheet.text(row, col, Style::Wrapped, rates_of_return(&input.outcomes[c]));
         });
         each(self, "Mean time of gross present value (years)", &|sheet, row, col, c| {
             years(sheet, row, col, input.outcomes[c].mean_time, "none");
@@ -282,16 +280,6 @@ impl Page {
             });
         }
         self.effects(input);
-        let lives: Vec<u32> = input.outcomes.iter().map(|o| o.service_years).collect();
-        let declining = layout.blocks.iter().any(|b| {
-            let rates: Vec<f64> = input.outcomes[b.choice].forward.iter().copied().flatten().collect();
-            rates.windows(2).any(|pair| pair[1] < pair[0] - 1e-9)
-        });
-        if declining && lives.windows(2).any(|pair| pair[0] != pair[1]) {
-            let text = "Annual equivalents of unequal lives are not comparable under a declining rate.";
-            self.sheet.paragraph(self.row, 0, LAST, Style::Strong, text);
-            self.row += 1;
-        }
     }
 
     fn effects(&mut self, input: &AuditInput<'_>) {
@@ -299,7 +287,7 @@ impl Page {
             for (effect, (plain, discounted)) in choice.effects.iter().zip(&input.outcomes[c].effects) {
                 for (words, value) in [("undiscounted", plain), ("discounted", discounted)] {
                     let Some(x) = value else { continue };
-                    let label = format!("Net cost per unit of {} ({words})", effect.name);
+                    let label = format!("Cost per unit of {} (effect {words})", effect.name);
                     self.sheet.text(self.row, 0, Style::Wrapped, label);
                     self.sheet.number(self.row, c as u32 + 1, Style::Ratio, *x);
                     self.row += 1;
@@ -338,23 +326,31 @@ impl Page {
         self.row += 2;
     }
 
-    fn warnings(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+    fn warnings(&mut self, input: &AuditInput<'_>) {
         let mut texts: Vec<String> = Vec::new();
-        for block in &layout.blocks {
-            texts.extend(input.outcomes[block.choice].basis.warnings());
-            texts.extend(input.outcomes[block.choice].curve.warnings());
-        }
         for problem in input.problems {
             let hint = problem.hint.as_ref().map(|hint| format!(" Try: {hint}")).unwrap_or_default();
             texts.push(format!("{problem}{hint}"));
         }
-        let mut seen = std::collections::BTreeSet::new();
-        texts.retain(|text| seen.insert(text.clone()));
         if texts.is_empty() {
             texts.push("None.".to_owned());
         }
         self.list("Warnings", &texts);
     }
+}
+
+/// Every rate of return in words, and where their number could not be settled.
+fn rates_of_return(outcome: &ChoiceOutcome) -> String {
+    if outcome.endless {
+        return ENDLESS_IRR.to_owned();
+    }
+    let percent = |rate: f64| format!("{:.4}%", rate * 100.0);
+    let found = outcome.irr.iter().map(|&rate| percent(rate));
+    let open = outcome.irr_unresolved.iter().map(|&(low, high)| {
+        format!("none, one or several at {} to {} (the flows do not settle it)", percent(low), percent(high))
+    });
+    let all: Vec<String> = found.chain(open).collect();
+    if all.is_empty() { NO_IRR.to_owned() } else { all.join("; ") }
 }
 
 fn is_factor(input: &AuditInput<'_>, cell: &super::TargetCell) -> bool {
