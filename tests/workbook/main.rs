@@ -7,6 +7,7 @@ mod graft;
 mod hostile;
 mod model;
 mod names_edit;
+mod numbers;
 mod package;
 mod patch;
 mod preserve;
