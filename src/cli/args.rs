@@ -1,8 +1,9 @@
 //! The one declaration of the command line: help, man page and completions derive from it.
 
+use std::ffi::{OsStr, OsString};
 use std::path::PathBuf;
 
-use clap::{Args, Parser, Subcommand, ValueEnum};
+use clap::{Args, CommandFactory, Parser, Subcommand, ValueEnum};
 
 /// Fills an appraisal workbook with discount factors and present values, and audits it.
 ///
@@ -30,8 +31,11 @@ pub struct Cli {
 /// When to use colour.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
 pub enum ColorWhen {
+    /// On a terminal, unless NO_COLOR is set or TERM is dumb
     Auto,
+    /// Always
     Always,
+    /// Never
     Never,
 }
 
@@ -50,29 +54,28 @@ pub enum Command {
     /// Write a ready-named appraisal workbook to type into
     Start(Start),
     /// Print the manual page
-    #[command(hide = true)]
     Man,
     /// Print completions for a shell
-    #[command(hide = true)]
     Completions {
-        /// bash, elvish, fish, powershell or zsh
+        /// The shell
         shell: clap_complete::Shell,
     },
 }
 
 #[derive(Debug, Args)]
 pub struct Fill {
-    /// The workbooks (.xlsx, .xlsm)
+    /// The workbooks (.xlsx, .xlsm); - reads one from standard input
     #[arg(required = true, value_name = "BOOK")]
     pub books: Vec<PathBuf>,
-    /// Where to write: a file when it ends in .xlsx or .xlsm (one workbook only), else a folder
+    /// Where to write: a file when it ends in .xlsx or .xlsm (one workbook only), - for standard output, else a
+    /// folder
     #[arg(long, value_name = "FILE|DIR")]
     pub out: Option<PathBuf>,
     /// Value on this rate line or schedule, and write it into the basis cell
-    #[arg(long, value_name = "LINE|ID", allow_hyphen_values = true)]
+    #[arg(long, value_name = "LINE|ID")]
     pub basis: Option<String>,
     /// Change the basis from OLD to NEW; a workbook on another basis is refused
-    #[arg(long, value_name = "OLD=NEW", conflicts_with = "basis", allow_hyphen_values = true)]
+    #[arg(long, value_name = "OLD=NEW", conflicts_with = "basis")]
     pub replace: Option<String>,
     /// Give a role to cells without a defined name: --role years="Sheet1!C4:Z4"
     #[arg(long = "role", value_name = "ROLE=RANGE")]
@@ -108,7 +111,7 @@ pub enum WriteWhat {
 
 #[derive(Debug, Args)]
 pub struct Check {
-    /// The workbook
+    /// The workbook; - reads it from standard input
     #[arg(value_name = "BOOK")]
     pub book: PathBuf,
     /// Give a role to cells without a defined name
@@ -122,13 +125,13 @@ pub struct Check {
 #[derive(Debug, Args)]
 pub struct Curve {
     /// A rate line, a rate or the id of a schedule
-    #[arg(value_name = "LINE|ID", allow_hyphen_values = true)]
+    #[arg(value_name = "LINE|ID", allow_hyphen_values = true, value_parser = not_an_option)]
     pub line: String,
     /// Print offsets 0 to N by 1
     #[arg(long, value_name = "N", default_value_t = 100, conflicts_with = "at")]
     pub to: u32,
     /// Print these offsets, in years
-    #[arg(long, value_name = "T,T,...", value_delimiter = ',', allow_hyphen_values = true)]
+    #[arg(long, value_name = "T,T,...", value_delimiter = ',')]
     pub at: Vec<f64>,
     /// The base year, for edges that are calendar years
     #[arg(long, value_name = "YEAR")]
@@ -155,13 +158,13 @@ pub struct Schedules {
 
 #[derive(Debug, Args)]
 pub struct Names {
-    /// The workbook
+    /// The workbook; - reads it from standard input
     #[arg(value_name = "BOOK")]
     pub book: PathBuf,
     /// Find years, flows and factors from headings and shapes, and write names into a copy
     #[arg(long, requires = "out")]
     pub suggest: bool,
-    /// The copy to write
+    /// The copy to write; - for standard output
     #[arg(long, value_name = "COPY", requires = "suggest")]
     pub out: Option<PathBuf>,
     /// Print one JSON document
@@ -174,7 +177,7 @@ pub struct Names {
 
 #[derive(Debug, Args)]
 pub struct Start {
-    /// The workbook to write (.xlsx)
+    /// The workbook to write (.xlsx); - for standard output
     #[arg(value_name = "FILE")]
     pub file: PathBuf,
     /// Replace an existing file
@@ -182,16 +185,126 @@ pub struct Start {
     pub force: bool,
 }
 
-/// `hence BOOK` alone is `hence fill BOOK`, so that a workbook can be dropped on the program.
-pub fn with_default_command(mut args: Vec<std::ffi::OsString>) -> Vec<std::ffi::OsString> {
-    use clap::CommandFactory;
-    if let Some(first) = args.get(1) {
-        let text = first.to_string_lossy();
-        let known = Cli::command().get_subcommands().any(|c| c.get_name() == text) || text == "help";
-        let file_like = text.contains(['.', '/', '\\']) || std::path::Path::new(first).exists();
-        if !known && !text.starts_with('-') && file_like {
-            args.insert(1, "fill".into());
-        }
+/// A rate line may begin with a minus sign and a digit; anything else that begins with one is a slip in an option.
+fn not_an_option(text: &str) -> Result<String, String> {
+    if text.starts_with('-') && !is_negative(OsStr::new(text)) {
+        return Err("no such option, and no rate line begins so".to_owned());
     }
-    args
+    Ok(text.to_owned())
+}
+
+/// Whether an argument begins with a minus sign and a digit: a number or a file, never an option.
+fn is_negative(argument: &OsStr) -> bool {
+    let text = argument.to_string_lossy();
+    let rest = text.strip_prefix('-').map(|rest| rest.strip_prefix('.').unwrap_or(rest));
+    rest.is_some_and(|rest| rest.starts_with(|c: char| c.is_ascii_digit()))
+}
+
+/// The arguments as the parser below wants them: `hence BOOK` alone is `hence fill BOOK`, so that a workbook can be
+/// dropped on the program, and arguments that begin with a minus sign and a digit are no options.
+pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
+    let cli = Cli::command();
+    let mut prepared: Vec<OsString> = Vec::with_capacity(args.len() + 1);
+    let mut command: Option<String> = None;
+    let mut wants_value = false;
+    for (i, arg) in args.into_iter().enumerate() {
+        let text = arg.to_string_lossy().into_owned();
+        if i == 0 {
+            prepared.push(arg);
+            continue;
+        }
+        if wants_value {
+            wants_value = false;
+            match prepared.pop() {
+                Some(mut option) if is_negative(&arg) => {
+                    option.push("=");
+                    option.push(arg);
+                    prepared.push(option);
+                }
+                option => prepared.extend(option.into_iter().chain([arg])),
+            }
+            continue;
+        }
+        if text.starts_with('-') && text != "-" && !is_negative(&arg) {
+            wants_value = takes_value(&cli, &text);
+            prepared.push(arg);
+            continue;
+        }
+        if command.is_none() {
+            let known = cli.get_subcommands().any(|c| c.get_name() == text) || text == "help";
+            if !known
+                && (text == "-" || text.contains(['.', '/', '\\']) || std::path::Path::new(&arg).exists())
+            {
+                prepared.insert(1, "fill".into());
+                command = Some("fill".to_owned());
+            } else {
+                command = Some(text);
+                prepared.push(arg);
+                continue;
+            }
+        }
+        let mut named = OsString::new();
+        if is_negative(&arg) && command.as_deref() != Some("curve") {
+            // A file: "./-1.xlsx" cannot be taken for an option.
+            named.push("./");
+        }
+        named.push(arg);
+        prepared.push(named);
+    }
+    prepared
+}
+
+/// Whether an option of any command is followed by its value as an argument of its own.
+fn takes_value(cli: &clap::Command, option: &str) -> bool {
+    let Some(long) = option.strip_prefix("--") else { return false };
+    let commands = std::iter::once(cli).chain(cli.get_subcommands());
+    commands
+        .flat_map(clap::Command::get_arguments)
+        .any(|a| a.get_long() == Some(long) && a.get_action().takes_values())
+}
+
+/// What `--color` asks for, before the arguments are parsed: errors of usage heed it too.
+pub fn color_asked(args: &[OsString]) -> clap::ColorChoice {
+    let texts: Vec<_> = args.iter().map(|arg| arg.to_string_lossy()).collect();
+    let after = texts.windows(2).find(|pair| pair[0] == "--color").map(|pair| pair[1].to_string());
+    let joined = texts.iter().find_map(|text| text.strip_prefix("--color=").map(str::to_owned));
+    match after.or(joined).as_deref() {
+        Some("always") => clap::ColorChoice::Always,
+        Some("never") => clap::ColorChoice::Never,
+        _ => clap::ColorChoice::Auto,
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::{Cli, prepared};
+    use clap::CommandFactory;
+
+    fn after(args: &[&str]) -> Vec<String> {
+        let args = std::iter::once(&"hence").chain(args).map(Into::into).collect();
+        prepared(args).into_iter().skip(1).map(|arg| arg.into_string().unwrap()).collect()
+    }
+
+    #[test]
+    fn the_declaration_is_sound() {
+        Cli::command().debug_assert();
+    }
+
+    #[test]
+    fn a_workbook_alone_is_filled() {
+        assert_eq!(after(&["plan.xlsx", "--json"]), ["fill", "plan.xlsx", "--json"]);
+        assert_eq!(after(&["--color", "never", "plan.xlsx"]), ["fill", "--color", "never", "plan.xlsx"]);
+        assert_eq!(after(&["-"]), ["fill", "-"]);
+        assert_eq!(after(&["check", "plan.xlsx"]), ["check", "plan.xlsx"]);
+        assert_eq!(after(&["flil"]), ["flil"]);
+        assert_eq!(after(&["--version"]), ["--version"]);
+    }
+
+    #[test]
+    fn a_minus_sign_and_a_digit_begin_no_option() {
+        assert_eq!(after(&["curve", "-1%", "--at", "-1,0"]), ["curve", "-1%", "--at=-1,0"]);
+        assert_eq!(after(&["fill", "-1.xlsx", "--basis", "-0.5%"]), ["fill", "./-1.xlsx", "--basis=-0.5%"]);
+        assert_eq!(after(&["-1.xlsx"]), ["fill", "./-1.xlsx"]);
+        assert_eq!(after(&["fill", "--by", "x", "-2.xlsx"]), ["fill", "--by", "x", "./-2.xlsx"]);
+    }
 }

@@ -2,21 +2,24 @@
 
 mod args;
 mod commands;
+mod input;
 mod json;
+mod manual;
 mod numbers;
 mod outputs;
+mod progress;
 mod render;
 mod terminal;
 
 use std::process::ExitCode;
 
-use clap::{CommandFactory, Parser};
+use clap::{CommandFactory, FromArgMatches};
 
 use args::{Cli, Command};
 use terminal::Terminal;
 
 /// How a run ends, in the words of the shell.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
 pub enum Outcome {
     /// Everything was done.
     Done,
@@ -26,6 +29,13 @@ pub enum Outcome {
     CouldNotRun,
 }
 
+impl Outcome {
+    /// How a run ends that failed on a workbook.
+    pub fn of(error: &hence_workbook::problem::WorkbookError) -> Self {
+        if error.is_about_files() { Outcome::CouldNotRun } else { Outcome::Wrong }
+    }
+}
+
 impl From<Outcome> for ExitCode {
     fn from(outcome: Outcome) -> Self {
         ExitCode::from(match outcome {
@@ -33,34 +43,6 @@ impl From<Outcome> for ExitCode {
             Outcome::Wrong => 1,
             Outcome::CouldNotRun => 2,
         })
-    }
-}
-
-fn main() -> ExitCode {
-    let cli = Cli::parse_from(args::with_default_command(std::env::args_os().collect()));
-    let terminal = Terminal::new(cli.color);
-    let result = match &cli.command {
-        Command::Fill(fill) => commands::fill::run(fill, &cli.schedules, &terminal),
-        Command::Check(check) => commands::check::run(check, &cli.schedules, &terminal),
-        Command::Curve(curve) => commands::curve::run(curve, &cli.schedules),
-        Command::Schedules(schedules) => commands::schedules::run(schedules, &cli.schedules),
-        Command::Names(names) => commands::names::run(names, &terminal),
-        Command::Start(start) => commands::start::run(start),
-        Command::Man => manual(),
-        Command::Completions { shell } => {
-            let mut text = Vec::new();
-            clap_complete::generate(*shell, &mut Cli::command(), "hence", &mut text);
-            terminal::print(&String::from_utf8_lossy(&text)).map(|()| Outcome::Done)
-        }
-    };
-    match result {
-        Ok(outcome) => outcome.into(),
-        // The reader went away: nothing is left to say to it.
-        Err(Failure::BrokenPipe) => ExitCode::SUCCESS,
-        Err(Failure::Message(message)) => {
-            terminal.complain(&message);
-            Outcome::CouldNotRun.into()
-        }
     }
 }
 
@@ -78,26 +60,48 @@ impl From<std::io::Error> for Failure {
         if error.kind() == std::io::ErrorKind::BrokenPipe {
             Failure::BrokenPipe
         } else {
-            Failure::Message(error.to_string())
+            Failure::Message(format!("standard output cannot be written: {error}"))
         }
     }
 }
 
-fn manual() -> Result<Outcome, Failure> {
-    let mut text = Vec::new();
-    let command = Cli::command();
-    clap_mangen::Man::new(command.clone()).render(&mut text)?;
-    // One page holds the whole program: each command's options follow as a section of their own.
-    for sub in command.get_subcommands().filter(|c| !c.is_hide_set()) {
-        let heading = format!(".SH \"HENCE {}\"\n", sub.get_name().to_uppercase());
-        text.extend_from_slice(heading.as_bytes());
-        let page = clap_mangen::Man::new(sub.clone());
-        page.render_synopsis_section(&mut text)?;
-        page.render_description_section(&mut text)?;
-        page.render_options_section(&mut text)?;
+fn main() -> ExitCode {
+    let arguments = args::prepared(std::env::args_os().collect());
+    let command = Cli::command().color(args::color_asked(&arguments));
+    let cli = match Cli::from_arg_matches(&command.get_matches_from(arguments)) {
+        Ok(cli) => cli,
+        Err(error) => error.exit(),
+    };
+    let terminal = Terminal::new(cli.color);
+    match run(&cli, &terminal) {
+        Ok(outcome) => outcome.into(),
+        // The reader went away: nothing is left to say to it.
+        Err(Failure::BrokenPipe) => ExitCode::SUCCESS,
+        Err(Failure::Message(message)) => {
+            terminal.complain(&message);
+            Outcome::CouldNotRun.into()
+        }
     }
-    let text =
-        String::from_utf8_lossy(&text).replace(".SH SYNOPSIS\n\\fBhence\\fR", ".SH SYNOPSIS\n\\fBhence\\fR");
-    terminal::print(&text)?;
+}
+
+fn run(cli: &Cli, terminal: &Terminal) -> Result<Outcome, Failure> {
+    match &cli.command {
+        Command::Fill(fill) => commands::fill::run(fill, &cli.schedules, terminal),
+        Command::Check(check) => commands::check::run(check, &cli.schedules, terminal),
+        Command::Curve(curve) => commands::curve::run(curve, &cli.schedules, terminal),
+        Command::Schedules(schedules) => commands::schedules::run(schedules, &cli.schedules),
+        Command::Names(names) => commands::names::run(names, terminal),
+        Command::Start(start) => commands::start::run(start, terminal),
+        Command::Man => printed(&manual::manual()?),
+        Command::Completions { shell } => {
+            let mut text = Vec::new();
+            clap_complete::generate(*shell, &mut Cli::command(), "hence", &mut text);
+            printed(&String::from_utf8_lossy(&text))
+        }
+    }
+}
+
+fn printed(text: &str) -> Result<Outcome, Failure> {
+    terminal::print(text)?;
     Ok(Outcome::Done)
 }

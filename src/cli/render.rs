@@ -1,6 +1,8 @@
 //! Reports as text for people.
 
-use hence_workbook::problem::{Problem, Severity};
+use std::collections::BTreeMap;
+
+use hence_workbook::problem::{Place, Problem, Severity};
 use hence_workbook::report::{OptionReport, Report};
 
 use crate::numbers::{money, percent};
@@ -9,30 +11,77 @@ use crate::terminal::{Terminal, escape};
 /// After so many problems only a count of the rest is printed.
 const MOST_PROBLEMS: usize = 20;
 
-/// Problems to standard error: place, what was found, the code; then what to do.
+/// Problems to standard error: file, place, what was found, the code; then what to do. Notes of one kind are told once,
+/// with how many more there are.
 pub fn problems(terminal: &Terminal, file: &str, problems: &[Problem]) {
-    for problem in problems.iter().take(MOST_PROBLEMS) {
-        let severity = match problem.severity {
-            Severity::Error => "error",
-            Severity::Warning => "warning",
-            Severity::Note => "note",
+    let (notes, graver): (Vec<&Problem>, Vec<&Problem>) =
+        problems.iter().partition(|problem| problem.severity == Severity::Note);
+    for problem in graver.iter().take(MOST_PROBLEMS) {
+        terminal.say(word(problem.severity), &line(file, problem, ""));
+    }
+    if let Some(rest) = graver.get(MOST_PROBLEMS..).filter(|rest| !rest.is_empty()) {
+        let errors = rest.iter().filter(|problem| problem.severity == Severity::Error).count();
+        let severity = if errors > 0 { "error" } else { "warning" };
+        let how = format!("{} more problems, {errors} of them errors; --json lists all", rest.len());
+        terminal.say(severity, &format!("{file}: {how}"));
+    }
+    let mut kinds: BTreeMap<&str, (&Problem, usize)> = BTreeMap::new();
+    for note in notes {
+        kinds.entry(note.code).or_insert((note, 0)).1 += 1;
+    }
+    for (note, count) in kinds.values() {
+        let more = match count - 1 {
+            0 => String::new(),
+            more => format!("; and {more} more of the kind"),
         };
-        let mut line = format!("{file}, {problem}");
-        if let Some(hint) = &problem.hint {
-            line.push_str(&format!("\n  Try: {hint}"));
-        }
-        terminal.say(severity, &line);
+        terminal.say("note", &line(file, note, &more));
     }
-    if problems.len() > MOST_PROBLEMS {
-        terminal.say("note", &format!("{file}: {} more problems", problems.len() - MOST_PROBLEMS));
+}
+
+fn word(severity: Severity) -> &'static str {
+    match severity {
+        Severity::Error => "error",
+        Severity::Warning => "warning",
+        Severity::Note => "note",
     }
+}
+
+fn line(file: &str, problem: &Problem, more: &str) -> String {
+    let mut line = if problem.place == Place::default() {
+        let named = problem.message.starts_with(file);
+        let before = if named { String::new() } else { format!("{file}: ") };
+        format!("{before}{} ({})", problem.message, problem.code)
+    } else {
+        format!("{file}, {problem}")
+    };
+    line.push_str(more);
+    if let Some(hint) = &problem.hint {
+        line.push_str(&format!("\n  Try: {hint}"));
+    }
+    line
+}
+
+/// A table of texts, aligned on the left.
+pub fn left_table(rows: &[Vec<String>]) -> String {
+    let widths = widths(rows);
+    let mut text = String::new();
+    for row in rows {
+        let cells: Vec<String> = row.iter().zip(&widths).map(|(cell, w)| format!("{cell:w$}")).collect();
+        text.push_str(cells.join("  ").trim_end());
+        text.push('\n');
+    }
+    text
+}
+
+fn widths(rows: &[Vec<String>]) -> Vec<usize> {
+    let columns = rows.iter().map(Vec::len).max().unwrap_or(0);
+    let width = |c: usize| rows.iter().filter_map(|r| r.get(c)).map(|s| s.chars().count()).max().unwrap_or(0);
+    (0..columns).map(width).collect()
 }
 
 /// A table with a left-aligned first column and right-aligned others.
 pub fn table(rows: &[Vec<String>]) -> String {
-    let columns = rows.iter().map(Vec::len).max().unwrap_or(0);
-    let width = |c: usize| rows.iter().filter_map(|r| r.get(c)).map(|s| s.chars().count()).max().unwrap_or(0);
-    let widths: Vec<usize> = (0..columns).map(width).collect();
+    let widths = widths(rows);
     let mut text = String::new();
     for row in rows {
         let mut line = String::new();

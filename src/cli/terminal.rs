@@ -41,6 +41,11 @@ impl Terminal {
         let _ = writeln!(std::io::stderr(), "{line}");
     }
 
+    /// A text to standard error as it is: a report, where standard output holds something else.
+    pub fn tell(&self, text: &str) {
+        let _ = std::io::stderr().write_all(text.as_bytes());
+    }
+
     /// Why the run could not go on.
     pub fn complain(&self, text: &str) {
         self.say("error", text);

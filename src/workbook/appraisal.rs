@@ -217,6 +217,28 @@ pub struct Covered {
     pub total: f64,
 }
 
+/// What a cell with a setting holds.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Stated {
+    /// A number.
+    Number(f64),
+    /// The serial number of a date.
+    Date(f64),
+    /// A text.
+    Text(String),
+}
+
+/// A cell that states something once (base, basis, timing, units and the like), so that a later change shows.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Setting {
+    /// The cell.
+    pub at: SheetRange,
+    /// The name it was found by.
+    pub from: String,
+    /// What it holds.
+    pub value: Stated,
+}
+
 /// Everything that fill and check need of a workbook.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Appraisal {
@@ -226,6 +248,8 @@ pub struct Appraisal {
     pub choices: Vec<Choice>,
     /// Which of them is the baseline.
     pub baseline: Option<usize>,
+    /// Every cell that was read for a setting, by sheet and place.
+    pub settings: Vec<Setting>,
     /// Every numeric row along the years, valued or not.
     pub coverage: Vec<Covered>,
     /// Warnings and notes found on the way.

@@ -1,7 +1,5 @@
 //! What a workbook holds in its targets against what its declared basis gives.
 
-use std::path::Path;
-
 use hence_core::Catalogue;
 
 use crate::appraisal::{Held, Target};
@@ -60,15 +58,14 @@ impl CheckReport {
     }
 }
 
-/// Checks one workbook file; nothing is written.
+/// Checks one workbook; nothing is written.
 ///
 /// # Errors
 /// Everything that keeps the workbook from being read and valued, each with its cell.
-pub fn check_file(path: &Path, roles: &[(String, String)], catalogue: &Catalogue) -> Result<CheckReport> {
-    let package = Package::open(path)?;
-    let mut problems = preflight(&package)?;
-    let book = Workbook::read(&package)?;
-    let mut appraisal = resolve(&package, &book, &Options { roles, basis: None })?;
+pub fn check(package: &Package, roles: &[(String, String)], catalogue: &Catalogue) -> Result<CheckReport> {
+    let mut problems = preflight(package)?;
+    let book = Workbook::read(package)?;
+    let mut appraisal = resolve(package, &book, &Options { roles, basis: None })?;
     problems.append(&mut appraisal.problems);
     let (outcomes, found) = value(&appraisal, catalogue)?;
     problems.extend(found);

@@ -81,16 +81,16 @@ pub fn fill_file(
     force: bool,
 ) -> Result<Report> {
     let package = Package::open(input)?;
-    let place = || Place::name(&output.display().to_string());
+    let refuse = |code, message: String, hint: &str| {
+        Err(Problem::error(code, Place::default(), message).hint(hint).into())
+    };
     if same_file(input, output) {
-        return Err(Problem::error("output-is-input", place(), "the output would replace the input")
-            .hint("give --out another name")
-            .into());
+        let message = format!("the output {} is the input, which is never written", output.display());
+        return refuse("output-is-input", message, "give --out another name");
     }
     if output.exists() && !force {
-        return Err(Problem::error("output-exists", place(), "there is such a file already")
-            .hint("--force to replace it, or --out with another name")
-            .into());
+        let message = format!("the output {} exists already", output.display());
+        return refuse("output-exists", message, "--force to replace it, or --out with another name");
     }
     let filled = fill(&package, request, catalogue)?;
     write_atomically(output, &filled.bytes, force)?;
@@ -207,8 +207,9 @@ fn require_basis(
     old: &str,
     catalogue: &Catalogue,
 ) -> Result<()> {
-    let parse =
-        |text: &str, place: Place| Basis::parse(text, catalogue).map_err(|error| from_core(&error, place));
+    let parse = |text: &str, place: Place| -> Result<Basis> {
+        Basis::parse(text, catalogue).map_err(|error| from_core(&error, place).into())
+    };
     let wanted = parse(old, Place::name("--replace"))?.canonical();
     let Some(declared) = declared else {
         let place = Place::name(&appraisal.choices[0].name);

@@ -1,12 +1,14 @@
 //! Roles of a workbook by its names, and a copy of it with suggested names.
 
-use std::path::Path;
+use std::collections::BTreeMap;
 
+use crate::formulas::absolute;
 use crate::model::Workbook;
 use crate::names_edit::{BookEdit, NewName, edit_workbook};
-use crate::package::{Changes, Package, same_file, write_atomically};
+use crate::package::{Changes, Package};
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result};
+use crate::references::quote_sheet;
 use crate::resolve::{Found, names};
 use crate::suggest::{Guess, suggest};
 
@@ -15,7 +17,7 @@ use crate::suggest::{Guess, suggest};
 pub struct Naming {
     /// Roles found, in the order of options.
     pub found: Vec<Found>,
-    /// What an appraisal needs and no name says.
+    /// What an appraisal needs and no name says; after a suggestion, what the guesses leave unsaid.
     pub missing: Vec<String>,
     /// Slips, and warnings about the file.
     pub problems: Vec<Problem>,
@@ -23,31 +25,29 @@ pub struct Naming {
     pub guesses: Vec<Guess>,
 }
 
-/// Lists the roles of a workbook file.
+/// Lists the roles of a workbook.
 ///
 /// # Errors
 /// The file cannot be read as a workbook.
-pub fn names_file(path: &Path) -> Result<Naming> {
-    let (package, book, problems) = open(path)?;
-    naming(&package, &book, problems)
+pub fn roles_of(package: &Package) -> Result<Naming> {
+    let mut problems = preflight(package)?;
+    let report = names(package, &Workbook::read(package)?)?;
+    problems.extend(report.slips);
+    Ok(Naming { found: report.found, missing: report.missing, problems, guesses: Vec::new() })
 }
 
-/// Guesses years, flows, factors and results from headings and shapes, and writes names for them into a copy.
+/// Guesses years, flows, factors and results from headings and shapes, and writes names for them into a copy, whose
+/// bytes are returned beside the report.
 ///
 /// # Errors
-/// As [`names_file`]; nothing could be guessed; the copy exists and `force` is false, or is the workbook itself.
-pub fn suggest_file(path: &Path, copy: &Path, force: bool) -> Result<Naming> {
-    let (package, book, problems) = open(path)?;
-    if same_file(path, copy) {
-        let place = Place::name(&copy.display().to_string());
-        return Err(Problem::error("output-is-input", place, "the copy would replace the workbook")
-            .hint("give --out another name")
-            .into());
-    }
-    let mut report = naming(&package, &book, problems)?;
-    report.guesses = suggest(&package, &book)?;
+/// As [`roles_of`]; nothing could be guessed.
+pub fn with_suggestions(package: &Package) -> Result<(Naming, Vec<u8>)> {
+    let mut report = roles_of(package)?;
+    let book = Workbook::read(package)?;
+    report.guesses = suggest(package, &book)?;
     if report.guesses.is_empty() {
-        return Err(Problem::error("nothing-to-suggest", Place::default(), "no row of years with flows beside it was found")
+        let message = "no row of years with flows beside it was found that has no names yet";
+        return Err(Problem::error("nothing-to-suggest", Place::default(), message)
             .hint("name the cells by hand: hence_years, hence_cost_works and so on")
             .into());
     }
@@ -56,30 +56,20 @@ pub fn suggest_file(path: &Path, copy: &Path, force: bool) -> Result<Naming> {
         .iter()
         .map(|guess| NewName {
             name: guess.name.clone(),
-            scope: guess.scope.clone(),
-            text: guess.target(),
+            scope: None,
+            text: format!("{}!{}", quote_sheet(&guess.at.sheet), absolute(guess.at.range)),
             hidden: false,
             comment: None,
         })
         .collect();
-    let edit = BookEdit { set_names, ..BookEdit::default() };
     let part = package.workbook_part().to_owned();
     let xml = package.part(&part)?.unwrap_or_default();
-    let mut changes = Changes::default();
-    changes.replace.insert(part, edit_workbook(&xml, &edit)?);
-    write_atomically(copy, &package.write(&changes)?, force)?;
-    Ok(report)
-}
-
-fn open(path: &Path) -> Result<(Package, Workbook, Vec<Problem>)> {
-    let package = Package::open(path)?;
-    let problems = preflight(&package)?;
-    let book = Workbook::read(&package)?;
-    Ok((package, book, problems))
-}
-
-fn naming(package: &Package, book: &Workbook, mut problems: Vec<Problem>) -> Result<Naming> {
-    let report = names(package, book)?;
-    problems.extend(report.slips);
-    Ok(Naming { found: report.found, missing: report.missing, problems, guesses: Vec::new() })
+    let edited = edit_workbook(&xml, &BookEdit { set_names, ..BookEdit::default() })?;
+    let changes = Changes { replace: BTreeMap::from([(part, edited)]), ..Changes::default() };
+    let bytes = package.write(&changes)?;
+    // The copy is read back: names that cannot be used would be seen here, and what is still missing is told.
+    let copy = roles_of(&Package::from_bytes(package.file_name(), bytes.clone())?)?;
+    report.missing = copy.missing;
+    report.problems = copy.problems;
+    Ok((report, bytes))
 }

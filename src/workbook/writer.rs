@@ -16,8 +16,10 @@ use crate::problem::{Place, Problem, Result};
 use crate::references::{Cell, Range};
 
 mod chart;
+mod form;
 
 pub use chart::{Chart, ChartKind, Series};
+pub use form::{Form, Look, form};
 
 /// The longest text a cell holds, in UTF-16 units.
 const MAX_TEXT: usize = 32_767;

@@ -168,6 +168,7 @@ pub fn appraisal(case: &Case) -> Appraisal {
         })
         .collect();
     Appraisal {
+        settings: Vec::new(),
         axes: names.iter().map(|s| axis(s)).collect(),
         choices,
         baseline: Some(0),

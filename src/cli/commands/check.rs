@@ -2,14 +2,15 @@
 
 use std::path::PathBuf;
 
-use hence_workbook::check::{CheckReport, check_file};
+use hence_workbook::check::{CheckReport, check};
 use serde::Serialize;
 
 use crate::args::Check;
 use crate::json::{Document, Found};
 use crate::numbers::shortest;
-use crate::terminal::{Terminal, escape};
-use crate::{Failure, Outcome, render, terminal};
+use crate::progress::Progress;
+use crate::terminal::{self, Terminal, escape};
+use crate::{Failure, Outcome, input, render};
 
 #[derive(Serialize)]
 struct CheckedBook {
@@ -34,16 +35,19 @@ struct DifferenceOut {
 pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
     let roles = super::fill::roles(&args.roles)?;
-    let name = super::fill::file_name(&args.book);
-    let shown = args.book.display().to_string();
-    match check_file(&args.book, &roles, &catalogue) {
+    let shown = input::shown(&args.book);
+    let progress = Progress::start();
+    progress.doing(&format!("checking {shown}"));
+    let checked = input::open(&args.book).and_then(|package| check(&package, &roles, &catalogue));
+    drop(progress);
+    match checked {
         Ok(report) => {
-            render::problems(terminal, &name, &report.problems);
+            render::problems(terminal, &shown, &report.problems);
             terminal::print(&if args.json { json(shown, &report) } else { text(&shown, &report) })?;
             Ok(if report.agrees() { Outcome::Done } else { Outcome::Wrong })
         }
         Err(error) => {
-            render::problems(terminal, &name, error.problems());
+            render::problems(terminal, &shown, error.problems());
             if args.json {
                 let book = CheckedBook {
                     input: shown,
@@ -55,7 +59,7 @@ pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
                 };
                 terminal::print(&Document::text(vec![book]))?;
             }
-            Ok(if error.is_about_files() { Outcome::CouldNotRun } else { Outcome::Wrong })
+            Ok(Outcome::of(&error))
         }
     }
 }

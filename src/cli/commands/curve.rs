@@ -6,7 +6,8 @@ use hence_core::{Basis, Where};
 
 use crate::args::Curve;
 use crate::numbers::{shortest, shortest_or_blank};
-use crate::{Failure, Outcome, terminal};
+use crate::terminal::{self, Terminal};
+use crate::{Failure, Outcome};
 
 struct Row {
     t: f64,
@@ -16,7 +17,7 @@ struct Row {
 }
 
 /// Prints columns t, factor, forward_rate (of the year that ends at t) and mean_rate (to t).
-pub fn run(args: &Curve, schedules: &Option<PathBuf>) -> Result<Outcome, Failure> {
+pub fn run(args: &Curve, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
     let basis = Basis::parse(&args.line, &catalogue).map_err(|e| super::typed(&e, &args.line))?;
     let offsets: Vec<f64> =
@@ -29,6 +30,9 @@ pub fn run(args: &Curve, schedules: &Option<PathBuf>) -> Result<Outcome, Failure
         let factor = curve.factor(t).map_err(|e| super::typed(&e, &args.line))?;
         let forward = if t > 0.0 { curve.forward_rate(t).ok() } else { None };
         rows.push(Row { t, factor, forward, mean: curve.mean_rate(t).ok() });
+    }
+    for warning in basis.warnings() {
+        terminal.say("warning", &format!("{}: {warning}", basis.canonical()));
     }
     let text = if args.json {
         json(&basis, &rows)
@@ -71,18 +75,16 @@ fn json(basis: &Basis, rows: &[Row]) -> String {
 }
 
 fn table(basis: &Basis, rows: &[Row]) -> String {
-    let mut text = format!("{}\n{}\n", basis.canonical(), basis.words());
-    for warning in basis.warnings() {
-        text.push_str(&format!("Warning: {warning}\n"));
-    }
-    text.push_str(&format!(
-        "{}\n\n{:>8}  {:>22}  {:>22}  {:>22}\n",
+    let mut text = format!(
+        "{}\n{}\n{}\n\n{:>8}  {:>22}  {:>22}  {:>22}\n",
+        basis.canonical(),
+        basis.words(),
         hence_core::CAUTION,
         "t",
         "factor",
         "forward_rate",
         "mean_rate"
-    ));
+    );
     for row in rows {
         text.push_str(&format!(
             "{:>8}  {:>22}  {:>22}  {:>22}\n",

@@ -2,12 +2,18 @@
 
 use std::path::{Path, PathBuf};
 
-use hence_workbook::fill::{FillRequest, fill_file};
+use hence_core::Catalogue;
+use hence_workbook::fill::{FillRequest, fill, fill_file};
+use hence_workbook::package::write_atomically;
+use hence_workbook::problem::Result as BookResult;
+use hence_workbook::report::{Report, Status};
 
 use crate::args::{Fill, WriteWhat};
 use crate::json::{Document, FilledBook};
-use crate::terminal::Terminal;
-use crate::{Failure, Outcome, outputs, render, terminal};
+use crate::outputs::{Folder, Output, outputs_for, stream};
+use crate::progress::Progress;
+use crate::terminal::{self, Terminal};
+use crate::{Failure, Outcome, input, render};
 
 /// Fills every workbook; one that fails does not keep the others from being filled.
 pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
@@ -21,64 +27,80 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
         as_of: args.as_of.clone(),
         by: args.by.clone(),
     };
-    let several = args.books.len() > 1;
-    let mut outputs = Vec::new();
-    for book in &args.books {
-        outputs.push(outputs::output_for(book, args.out.as_deref(), several)?);
+    let outputs = outputs_for(&args.books, args.out.as_deref())?;
+    let streams = outputs.contains(&Output::Stream);
+    if streams && args.json {
+        return Err(Failure::Message(
+            "--json and a workbook both want standard output\nTry: --out with a file".into(),
+        ));
     }
-    for (i, output) in outputs.iter().enumerate() {
-        if let Some(j) = outputs[..i].iter().position(|other| other == output) {
-            return Err(Failure::Message(format!(
-                "{} and {} would both be written to {}\nTry: fill them into different folders",
-                args.books[j].display(),
-                args.books[i].display(),
-                output.display()
-            )));
-        }
-    }
+    let _folder = Folder::make(args.out.as_deref())?;
+    let progress = Progress::start();
     let mut books = Vec::new();
+    let mut texts = Vec::new();
     let mut ended = Outcome::Done;
-    let mut text = String::new();
-    for (book, output) in args.books.iter().zip(&outputs) {
-        let shown = book.display().to_string();
-        match fill_file(book, output, &request, &catalogue, args.force) {
-            Ok(report) => {
-                render::problems(terminal, &file_name(book), &report.problems);
-                if report.status() != hence_workbook::report::Status::Done {
-                    ended = worse(ended, Outcome::Wrong);
+    for (i, (book, output)) in args.books.iter().zip(&outputs).enumerate() {
+        let (shown, written) = (input::shown(book), output.shown());
+        progress.doing(&match args.books.len() {
+            1 => format!("filling {shown}"),
+            n => format!("filling {} of {n}: {shown}", i + 1),
+        });
+        let filled = fill_one(book, output, &request, &catalogue, args.force);
+        progress.pause();
+        match filled {
+            Ok((report, bytes)) => {
+                render::problems(terminal, &shown, &report.problems);
+                if report.status() != Status::Done {
+                    ended = ended.max(Outcome::Wrong);
                 }
-                if args.json {
-                    books.push(FilledBook::filled(shown, output.display().to_string(), &report));
-                } else {
-                    if !text.is_empty() {
-                        text.push('\n');
-                    }
-                    text.push_str(&render::report(&shown, &output.display().to_string(), &report));
+                if let Some(bytes) = bytes {
+                    stream(&bytes)?;
                 }
+                texts.push(render::report(&shown, &written, &report));
+                books.push(FilledBook::filled(shown, written, &report));
             }
             Err(error) => {
-                render::problems(terminal, &file_name(book), error.problems());
-                ended =
-                    worse(ended, if error.is_about_files() { Outcome::CouldNotRun } else { Outcome::Wrong });
+                render::problems(terminal, &shown, error.problems());
+                terminal.complain(&format!("{shown}: not filled"));
+                ended = ended.max(Outcome::of(&error));
                 books.push(FilledBook::failed(shown, error.problems()));
             }
         }
     }
-    terminal::print(&if args.json { Document::text(books) } else { text })?;
+    drop(progress);
+    let text = texts.join("\n");
+    if args.json {
+        terminal::print(&Document::text(books))?;
+    } else if streams {
+        terminal.tell(&text);
+    } else {
+        terminal::print(&text)?;
+    }
     Ok(ended)
 }
 
-/// The worse of two ends.
-fn worse(a: Outcome, b: Outcome) -> Outcome {
-    match (a, b) {
-        (Outcome::CouldNotRun, _) | (_, Outcome::CouldNotRun) => Outcome::CouldNotRun,
-        (Outcome::Wrong, _) | (_, Outcome::Wrong) => Outcome::Wrong,
-        _ => Outcome::Done,
+/// Fills one; the bytes come back where they go to standard output.
+fn fill_one(
+    book: &Path,
+    output: &Output,
+    request: &FillRequest,
+    catalogue: &Catalogue,
+    force: bool,
+) -> BookResult<(Report, Option<Vec<u8>>)> {
+    match output {
+        Output::File(path) if !input::is_dash(book) => {
+            fill_file(book, path, request, catalogue, force).map(|report| (report, None))
+        }
+        Output::File(path) => {
+            let filled = fill(&input::open(book)?, request, catalogue)?;
+            write_atomically(path, &filled.bytes, force)?;
+            Ok((filled.report, None))
+        }
+        Output::Stream => {
+            let filled = fill(&input::open(book)?, request, catalogue)?;
+            Ok((filled.report, Some(filled.bytes)))
+        }
     }
-}
-
-pub fn file_name(path: &Path) -> String {
-    path.file_name().unwrap_or(path.as_os_str()).to_string_lossy().into_owned()
 }
 
 /// `A=B` in two.

@@ -1,59 +1,109 @@
 //! `hence names`: which roles a workbook declares, and a copy with suggested names.
 
-use hence_workbook::naming::{names_file, suggest_file};
+use std::path::Path;
+
+use hence_workbook::naming::{Naming, roles_of, with_suggestions};
+use hence_workbook::package::{same_file, write_atomically};
+use hence_workbook::problem::{Place, Problem, Result as BookResult, Severity};
 
 use crate::args::Names;
 use crate::json::{Document, Found};
-use crate::terminal::{Terminal, escape};
-use crate::{Failure, Outcome, render, terminal};
+use crate::outputs::{self, Output};
+use crate::terminal::{self, Terminal, escape};
+use crate::{Failure, Outcome, input, render};
 
 /// Lists roles; with `--suggest`, writes the guesses into a copy and lists them with their reasons.
 pub fn run(args: &Names, terminal: &Terminal) -> Result<Outcome, Failure> {
-    let name = super::fill::file_name(&args.book);
-    let result = match &args.out {
-        Some(out) => suggest_file(&args.book, out, args.force),
-        None => names_file(&args.book),
-    };
-    let report = match result {
-        Ok(report) => report,
+    let shown = input::shown(&args.book);
+    let output = args.out.as_deref().map(Output::named).transpose()?;
+    let streams = output == Some(Output::Stream);
+    if streams && args.json {
+        return Err(Failure::Message(
+            "--json and --out - both want standard output\nTry: --out with a file".into(),
+        ));
+    }
+    let (report, bytes) = match examine(args, output.as_ref()) {
+        Ok(result) => result,
         Err(error) => {
-            render::problems(terminal, &name, error.problems());
-            return Ok(if error.is_about_files() { Outcome::CouldNotRun } else { Outcome::Wrong });
+            render::problems(terminal, &shown, error.problems());
+            if args.json {
+                let problems: Vec<Found> = error.problems().iter().map(Found::from).collect();
+                terminal::print(&Document::text(vec![serde_json::json!({
+                    "input": shown, "output": null, "found": [], "guesses": [], "missing": [], "problems": problems
+                })]))?;
+            }
+            return Ok(Outcome::of(&error));
         }
     };
-    render::problems(terminal, &name, &report.problems);
+    render::problems(terminal, &shown, &report.problems);
+    let written = output.as_ref().map(Output::shown);
     if args.json {
-        let found: Vec<_> = report
-            .found
-            .iter()
-            .map(
-                |f| serde_json::json!({"name": f.name, "role": f.role, "place": f.place, "option": f.option}),
-            )
-            .collect();
-        let guesses: Vec<_> = report
-            .guesses
-            .iter()
-            .map(|g| serde_json::json!({"name": g.name, "place": g.at.to_string(), "why": g.why}))
-            .collect();
-        let problems: Vec<Found> = report.problems.iter().map(Found::from).collect();
-        terminal::print(&Document::text(vec![serde_json::json!({
-            "input": args.book.display().to_string(), "found": found, "guesses": guesses,
-            "missing": report.missing, "problems": problems
-        })]))?;
-        return Ok(Outcome::Done);
+        terminal::print(&json(&shown, written.as_deref(), &report))?;
+    } else if streams {
+        terminal.tell(&text(written.as_deref(), &report));
+    } else {
+        terminal::print(&text(written.as_deref(), &report))?;
     }
+    if streams {
+        outputs::stream(&bytes)?;
+    }
+    let wrong = report.problems.iter().any(|problem| problem.severity == Severity::Error);
+    Ok(if wrong { Outcome::Wrong } else { Outcome::Done })
+}
+
+/// The report, and the copy's bytes where one was asked for.
+fn examine(args: &Names, output: Option<&Output>) -> BookResult<(Naming, Vec<u8>)> {
+    let package = input::open(&args.book)?;
+    let Some(output) = output else { return Ok((roles_of(&package)?, Vec::new())) };
+    if let Output::File(path) = output {
+        refuse_input(&args.book, path)?;
+    }
+    let (report, bytes) = with_suggestions(&package)?;
+    if let Output::File(path) = output {
+        write_atomically(path, &bytes, args.force)?;
+    }
+    Ok((report, bytes))
+}
+
+/// The input is never written.
+fn refuse_input(book: &Path, copy: &Path) -> BookResult<()> {
+    if input::is_dash(book) || !same_file(book, copy) {
+        return Ok(());
+    }
+    let message = format!("the copy {} is the input, which is never written", copy.display());
+    Err(Problem::error("output-is-input", Place::default(), message).hint("give --out another name").into())
+}
+
+fn json(shown: &str, written: Option<&str>, report: &Naming) -> String {
+    let found: Vec<_> = report
+        .found
+        .iter()
+        .map(|f| {
+            let place = f.place.to_string();
+            serde_json::json!({"name": f.name, "role": f.role, "place": place, "option": f.option})
+        })
+        .collect();
+    let guesses: Vec<_> = report
+        .guesses
+        .iter()
+        .map(|g| serde_json::json!({"name": g.name, "place": g.at.to_string(), "why": g.why}))
+        .collect();
+    let problems: Vec<Found> = report.problems.iter().map(Found::from).collect();
+    Document::text(vec![serde_json::json!({
+        "input": shown, "output": written, "found": found, "guesses": guesses, "missing": report.missing,
+        "problems": problems
+    })])
+}
+
+fn text(written: Option<&str>, report: &Naming) -> String {
     let mut text = String::new();
     if !report.found.is_empty() {
         let mut rows = vec![["Name", "Role", "Place", "Option"].map(String::from).to_vec()];
         for f in &report.found {
-            rows.push(vec![
-                f.name.clone(),
-                f.role.clone(),
-                f.place.clone(),
-                f.option.clone().unwrap_or_default(),
-            ]);
+            let option = f.option.clone().unwrap_or_default();
+            rows.push(vec![f.name.clone(), f.role.clone(), f.place.to_string(), option]);
         }
-        text.push_str(&left_table(&rows));
+        text.push_str(&render::left_table(&rows));
     }
     for guess in &report.guesses {
         text.push_str(&format!("guess: {} = {}: {}\n", guess.name, guess.at, guess.why));
@@ -61,24 +111,10 @@ pub fn run(args: &Names, terminal: &Terminal) -> Result<Outcome, Failure> {
     for missing in &report.missing {
         text.push_str(&format!("missing: {missing}\n"));
     }
-    if let Some(out) = &args.out {
+    if let Some(written) = written {
         text.push_str(&format!(
-            "{}: a copy with the guessed names; look them over before filling it\n",
-            out.display()
+            "{written}: a copy with the guessed names; look them over before filling it\n"
         ));
     }
-    terminal::print(&escape(&text))?;
-    Ok(Outcome::Done)
-}
-
-fn left_table(rows: &[Vec<String>]) -> String {
-    let width = |c: usize| rows.iter().map(|r| r[c].chars().count()).max().unwrap_or(0);
-    let widths: Vec<usize> = (0..rows[0].len()).map(width).collect();
-    let mut text = String::new();
-    for row in rows {
-        let cells: Vec<String> = row.iter().zip(&widths).map(|(cell, w)| format!("{cell:w$}")).collect();
-        text.push_str(cells.join("  ").trim_end());
-        text.push('\n');
-    }
-    text
+    escape(&text)
 }

@@ -5,7 +5,7 @@ use std::path::PathBuf;
 use hence_core::Schedule;
 
 use crate::args::Schedules;
-use crate::{Failure, Outcome, terminal};
+use crate::{Failure, Outcome, render, terminal};
 
 /// Lists all, or prints one with its source.
 pub fn run(args: &Schedules, folder: &Option<PathBuf>) -> Result<Outcome, Failure> {
@@ -41,7 +41,7 @@ fn fields(schedule: &Schedule) -> Vec<(&'static str, String)> {
         ("year", schedule.year().to_string()),
         ("place", schedule.place().to_owned()),
         ("address", schedule.address().to_owned()),
-        ("line", schedule.line()),
+        ("line", schedule.spec().to_string()),
         ("status", schedule.status().to_string()),
         ("checked", schedule.checked().to_owned()),
         ("notes", schedule.notes().to_owned()),
@@ -67,14 +67,13 @@ fn list(schedules: &[&Schedule]) -> String {
             format!("{}, {}, {}", s.body(), s.title(), s.year()),
         ]);
     }
-    let width = |c: usize| rows.iter().map(|r| r[c].chars().count()).max().unwrap_or(0);
-    let (first, second) = (width(0), width(1));
-    let mut text = String::new();
-    for row in &rows {
-        text.push_str(&format!("{:first$}  {:second$}  {}\n", row[0], row[1], row[2]));
-    }
-    text.push_str(&format!("\n{}\n", hence_core::CAUTION));
-    text
+    format!(
+        "{}
+{}
+",
+        render::left_table(&rows),
+        hence_core::CAUTION
+    )
 }
 
 fn one(schedule: &Schedule) -> String {

@@ -87,7 +87,7 @@ fn eras(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes: &mut
             sheet.number(top + k as u32, col, Style::Money, total);
         }
     }
-    table_chart(sheet, input, (TOPS[1], top, edges.len() as u32 + 1), ChartKind::Columns, title);
+    table_chart(sheet, input, (TOPS[1], top, edges.len() as u32 + 1), ChartKind::Columns, title, None);
     finishes.push(finish(title, "Years from the base", "Net present value", "General", "#,##0"));
     *row = top + edges.len() as u32 + 3;
 }
@@ -109,12 +109,14 @@ fn table_chart(
     (at, top, rows): (u32, u32, u32),
     kind: ChartKind,
     title: &str,
+    without: Option<usize>,
 ) {
     let column = |col: u32| SheetRange {
         sheet: input.names.charts.clone(),
         range: Range { first: Cell { row: top, col }, last: Cell { row: top + rows - 1, col } },
     };
-    let series = input.appraisal.choices.iter().enumerate().map(|(c, choice)| Series {
+    let options = input.appraisal.choices.iter().enumerate().filter(|(c, _)| Some(*c) != without);
+    let series = options.map(|(c, choice)| Series {
         name: choice.name.clone(),
         x: column(0),
         y: column(c as u32 + 1),
@@ -124,6 +126,8 @@ fn table_chart(
 
 fn flat_rates(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes: &mut Vec<ChartFinish>) {
     let over = input.outcomes.iter().any(|o| o.increment.is_some());
+    // The baseline itself has no increment: its column says so, and it is no line of the chart.
+    let alone = input.appraisal.baseline.filter(|&b| over && input.outcomes[b].increment.is_none());
     let title = if over {
         "Net present value over the baseline, by flat rate"
     } else {
@@ -149,14 +153,16 @@ fn flat_rates(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes
         sheet.number(top + k as u32, 0, Style::Rate, *rate);
     }
     for (c, column) in table.iter().enumerate() {
-        sheet.text(top - 1, c as u32 + 1, Style::Heading, &input.appraisal.choices[c].name);
+        let name = &input.appraisal.choices[c].name;
+        let heading = if alone == Some(c) { format!("{name} (as it stands)") } else { name.clone() };
+        sheet.text(top - 1, c as u32 + 1, Style::Heading, heading);
         for (k, value) in column.iter().enumerate() {
             if let Some(x) = value.filter(|x| x.is_finite()) {
                 sheet.number(top + k as u32, c as u32 + 1, Style::Money, x);
             }
         }
     }
-    table_chart(sheet, input, (TOPS[2], top, RATES as u32), ChartKind::Lines, title);
+    table_chart(sheet, input, (TOPS[2], top, RATES as u32), ChartKind::Lines, title, alone);
     let range = Some((0.0, 0.1));
     let base = finish(title, "Flat rate a year", "Net present value", "0%", "#,##0");
     finishes.push(ChartFinish { markers: true, x_range: range, ..base });

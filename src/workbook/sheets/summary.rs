@@ -53,7 +53,7 @@ pub(super) fn sheet(
     page.basis(input, layout);
     page.results(input, layout);
     page.checks(input, checks, coverage);
-    page.warnings(input, layout);
+    page.warnings(input);
     page.list("What differs in the file by design", input.differs);
     page.sheet.text(page.row, 0, Style::Section, "Notes of the reviewer (type below; kept at the next fill)");
     page.sheet.freeze(VERDICT + 1, 0);
@@ -168,7 +168,7 @@ impl Page {
         }
         self.row += 1;
         self.totals(input, layout);
-        self.measures(input, layout);
+        self.measures(input);
         self.row += 1;
         for choice in &input.appraisal.choices {
             let names = |wanted: &[StreamKind]| {
@@ -238,7 +238,7 @@ impl Page {
         }
     }
 
-    fn measures(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+    fn measures(&mut self, input: &AuditInput<'_>) {
         let each = |page: &mut Page, label: &str, put: &dyn Fn(&mut Sheet, u32, u32, usize)| {
             page.sheet.text(page.row, 0, Style::Wrapped, label);
             for c in 0..input.outcomes.len() {
@@ -280,16 +280,6 @@ impl Page {
             });
         }
         self.effects(input);
-        let lives: Vec<u32> = input.outcomes.iter().map(|o| o.service_years).collect();
-        let declining = layout.blocks.iter().any(|b| {
-            let rates: Vec<f64> = input.outcomes[b.choice].forward.iter().copied().flatten().collect();
-            rates.windows(2).any(|pair| pair[1] < pair[0] - 1e-9)
-        });
-        if declining && lives.windows(2).any(|pair| pair[0] != pair[1]) {
-            let text = "Annual equivalents of unequal lives are not comparable under a declining rate.";
-            self.sheet.paragraph(self.row, 0, LAST, Style::Strong, text);
-            self.row += 1;
-        }
     }
 
     fn effects(&mut self, input: &AuditInput<'_>) {
@@ -315,10 +305,11 @@ impl Page {
         let factors: usize = input.outcomes.iter().map(|o| o.factors.len()).sum();
         let in_lines = input.cells.iter().filter(|cell| is_factor(input, cell)).count();
         let cells = input.cells.len() - in_lines;
-        let rest = checks.count.saturating_sub(factors + cells);
+        let rest = checks.count.saturating_sub(factors + cells + checks.settings);
         for (label, number, allowed) in [
             ("Factors: second route, Discounting, filled cells", factors, "1e-9 relative"),
             ("Present values and totals on Discounting", rest, "1e-9 of the gross present value"),
+            ("What the workbook states: base, basis, timing and the like", checks.settings, "none"),
             ("Other filled or compared cells", cells, "half of the last displayed unit, or 1e-9"),
             ("Undiscounted totals of valued rows", coverage.valued, "1e-9 relative, or 0.000001"),
         ] {
@@ -335,18 +326,12 @@ impl Page {
         self.row += 2;
     }
 
-    fn warnings(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+    fn warnings(&mut self, input: &AuditInput<'_>) {
         let mut texts: Vec<String> = Vec::new();
-        for block in &layout.blocks {
-            texts.extend(input.outcomes[block.choice].basis.warnings());
-            texts.extend(input.outcomes[block.choice].curve.warnings());
-        }
         for problem in input.problems {
             let hint = problem.hint.as_ref().map(|hint| format!(" Try: {hint}")).unwrap_or_default();
             texts.push(format!("{problem}{hint}"));
         }
-        let mut seen = std::collections::BTreeSet::new();
-        texts.retain(|text| seen.insert(text.clone()));
         if texts.is_empty() {
             texts.push("None.".to_owned());
         }

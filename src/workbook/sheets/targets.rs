@@ -178,7 +178,7 @@ impl Maker<'_> {
                 let text = format!("({}-{})/({}-{})", value.0, less.0, slope.0, less_slope.0);
                 (text, (value.1 - less.1) / (slope.1 - less_slope.1))
             }
-            _ => (format!("{}/{}", value.0, slope.0), value.1 / slope.1),
+            _ => (format!("({})/({})", value.0, slope.0), value.1 / slope.1),
         };
         Some(Live::number(format!("{cell}+{text}"), rate + step))
     }

@@ -1,0 +1,33 @@
+//! Where workbooks come from: files, or standard input for `-`.
+
+use std::io::Read;
+use std::path::Path;
+
+use hence_workbook::package::{MAX_FILE, Package};
+use hence_workbook::problem::{Place, Problem, Result};
+
+/// What stands for standard input or output.
+pub const DASH: &str = "-";
+
+/// Whether a path stands for standard input or output.
+pub fn is_dash(path: &Path) -> bool {
+    path.as_os_str() == DASH
+}
+
+/// A workbook's name in messages: as it was given.
+pub fn shown(path: &Path) -> String {
+    if is_dash(path) { "standard input".to_owned() } else { path.display().to_string() }
+}
+
+/// Opens a workbook for reading.
+pub fn open(path: &Path) -> Result<Package> {
+    if !is_dash(path) {
+        return Package::open(path);
+    }
+    let mut bytes = Vec::new();
+    let read = std::io::stdin().lock().take(MAX_FILE + 1).read_to_end(&mut bytes);
+    read.map_err(|error| {
+        Problem::error("cannot-read", Place::default(), format!("standard input cannot be read: {error}"))
+    })?;
+    Package::from_bytes("standard input", bytes)
+}
