@@ -11,6 +11,7 @@ mod libreoffice;
 mod model;
 mod names_edit;
 mod numbers;
+mod own;
 mod package;
 mod patch;
 mod readme;
