@@ -391,7 +391,7 @@ fn flows(way: &Way) -> BTreeMap<u32, Vec<f64>> {
         let year = BASE_YEAR + n;
         let works = way.works.iter().find(|(y, _)| *y == year).map_or(0.0, |(_, x)| *x);
         let running = if year > done { way.running } else { 0.0 };
-        let due = way.renewal_every > 0 && year > done && (year - done) % way.renewal_every == 0;
+        let due = way.renewal_every > 0 && year > done && (year - done).is_multiple_of(way.renewal_every);
         let renewal = if due { way.renewal } else { 0.0 };
         let water = if year > done { way.water } else { 0.0 };
         let left = if year > done { way.damage_left } else { 1.0 };

@@ -207,8 +207,9 @@ fn require_basis(
     old: &str,
     catalogue: &Catalogue,
 ) -> Result<()> {
-    let parse =
-        |text: &str, place: Place| Basis::parse(text, catalogue).map_err(|error| from_core(&error, place));
+    let parse = |text: &str, place: Place| -> Result<Basis> {
+        Basis::parse(text, catalogue).map_err(|error| from_core(&error, place).into())
+    };
     let wanted = parse(old, Place::name("--replace"))?.canonical();
     let Some(declared) = declared else {
         let place = Place::name(&appraisal.choices[0].name);

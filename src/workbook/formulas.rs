@@ -83,12 +83,17 @@ pub fn scale(stream: &Stream, home: &str) -> String {
     text
 }
 
+/// -1 where a residual value lowers the last flow (a cost), +1 where it raises it.
+pub fn residual_sign(kind: StreamKind) -> f64 {
+    if kind == StreamKind::Cost { -1.0 } else { 1.0 }
+}
+
 /// What the residual value adds to the last flow, as `-1000*Sheet!$B$3`; none without one.
 ///
-/// It lowers a cost or a damage and raises a benefit, in the stream's unit and sign.
+/// It is entered positive whatever the signs of the stream, in the stream's unit, and has no uplift.
 pub fn residual(stream: &Stream, home: &str) -> Option<String> {
     let given = stream.residual.as_ref()?;
-    let factor = side(stream.kind) * stream.sign * stream.unit;
+    let factor = residual_sign(stream.kind) * stream.unit;
     let value = given.at.as_ref().map_or_else(|| literal(given.value), |at| refer(home, at));
     Some(match factor {
         1.0 => format!("+{value}"),

@@ -112,26 +112,18 @@ impl Layout {
             block_of.push(found);
         }
         let table = blocks.len() as u32 * BLOCK_WIDTH;
-        let mut row = DATA_ROW;
+        let mut free = DATA_ROW..;
+        let mut next = || free.next().unwrap_or(u32::MAX);
         let mut rows = Vec::new();
         for (choice, outcome) in appraisal.choices.iter().zip(outcomes) {
-            let mut next = || {
-                row += 1;
-                row - 1
-            };
-            rows.push(ChoiceRows {
-                streams: choice.streams.iter().map(|_| next()).collect(),
-                absolute: Sums { costs: next(), benefits: next(), net: next() },
-                increment: outcome.increment.as_ref().map(|_| Sums {
-                    costs: next(),
-                    benefits: next(),
-                    net: next(),
-                }),
-                annuity: next(),
-                annual: next(),
-                ratio: next(),
-            });
-            row += 1;
+            let streams = choice.streams.iter().map(|_| next()).collect();
+            let absolute = Sums { costs: next(), benefits: next(), net: next() };
+            let increment =
+                outcome.increment.is_some().then(|| Sums { costs: next(), benefits: next(), net: next() });
+            let (annuity, annual, ratio) = (next(), next(), next());
+            rows.push(ChoiceRows { streams, absolute, increment, annuity, annual, ratio });
+            // A blank row between options.
+            next();
         }
         Layout { names: names.clone(), blocks, block_of, table, rows }
     }

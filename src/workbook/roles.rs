@@ -82,8 +82,10 @@ pub enum Role {
     Payback,
     /// hence's own name for the verdict cell.
     Verdict,
-    /// hence's own record of the formulas it wrote.
+    /// hence's own mark on the sheets it wrote.
     Own,
+    /// The digest of the texts on hence's own sheets.
+    Digest,
 }
 
 /// Whether a role is read, written, or hence's own.
@@ -95,6 +97,8 @@ pub enum Way {
     Out,
     /// Set by hence itself; not for the user.
     Own,
+    /// The digest of the texts on hence's own sheets.
+    Digest,
 }
 
 /// Whether the name of a role carries the name of a stream.
@@ -252,7 +256,8 @@ pub const ROLES: &[RoleInfo] = &[
     row(Role::Irr, "irr", Way::Out, Takes::NoStream, "internal rate of return, one cell"),
     row(Role::Payback, "payback", Way::Out, Takes::NoStream, "discounted payback in years, one cell"),
     row(Role::Verdict, "verdict", Way::Own, Takes::NoStream, "hence's own name for the verdict cell"),
-    row(Role::Own, "own", Way::Own, Takes::NoStream, "hence's own record of the formulas it wrote"),
+    row(Role::Own, "own", Way::Own, Takes::NoStream, "hence's own mark on the sheets it wrote"),
+    row(Role::Digest, "digest", Way::Own, Takes::NoStream, "hence's own digest of the texts on such a sheet"),
 ];
 
 impl Role {

@@ -59,6 +59,8 @@ pub enum Style {
     Money,
     /// Money in a line of totals.
     Total,
+    /// A short word such as "agrees", in the middle of its cell.
+    Result,
     /// A ratio, or years.
     Ratio,
     /// A small difference or tolerance.
@@ -68,7 +70,11 @@ pub enum Style {
 }
 
 impl Style {
-    fn format(self) -> Format {
+    fn wraps(self) -> bool {
+        matches!(self, Style::Heading | Style::Wrapped | Style::Strong)
+    }
+
+    fn format(self, decimals: bool) -> Format {
         let mut format = Format::new();
         format.set_font_name("Calibri").set_font_size(10.0);
         format.set_vertical_align(FormatVerticalAlignment::VerticalTop);
@@ -93,18 +99,22 @@ impl Style {
             Style::Strong => {
                 format.set_text_wrap().set_bold().set_align(FormatAlignment::Left);
             }
+            Style::Result => {
+                format.set_align(FormatAlignment::Center);
+            }
             Style::Total => {
                 format.set_bold().set_border_top(FormatBorder::Thin);
             }
             _ => {}
         }
-        if let Some(code) = self.number_format() {
+        if let Some(code) = self.number_format(decimals) {
             format.set_num_format(code);
         }
         format
     }
 
-    fn number_format(self) -> Option<&'static str> {
+    /// Small sums of money (in millions, say) are shown with decimals.
+    fn number_format(self, decimals: bool) -> Option<&'static str> {
         Some(match self {
             Style::Year => "0",
             Style::Date => "yyyy\\-mm\\-dd",
@@ -112,6 +122,7 @@ impl Style {
             Style::Rate => "0.00%",
             Style::Share => "0%",
             Style::Factor => "0.000000",
+            Style::Money | Style::Total if decimals => "#,##0.00;\\-#,##0.00;0.00",
             Style::Money | Style::Total => "#,##0;\\-#,##0;0",
             Style::Ratio => "#,##0.00",
             Style::Difference => "0.0E+00",
@@ -132,6 +143,15 @@ pub enum Content {
     Formula(String, Cached),
 }
 
+impl Content {
+    fn magnitude(&self) -> f64 {
+        match self {
+            Content::Number(x) | Content::Formula(_, Cached::Number(x)) => x.abs(),
+            _ => 0.0,
+        }
+    }
+}
+
 /// A sheet to be written.
 #[derive(Clone, Debug, Default)]
 pub struct Sheet {
@@ -144,6 +164,7 @@ pub struct Sheet {
     freeze: Option<(u32, u32)>,
     repeat: Option<(u32, u32)>,
     charts: Vec<(Cell, Chart)>,
+    upright: bool,
 }
 
 impl Sheet {
@@ -156,6 +177,9 @@ impl Sheet {
     pub fn text(&mut self, row: u32, col: u32, style: Style, text: impl AsRef<str>) {
         let text = legal(text.as_ref());
         if !text.is_empty() {
+            if style.wraps() {
+                self.make_room(row, self.width(col), &text);
+            }
             self.cells.insert(Cell { row, col }, (Content::Text(text), style));
         }
     }
@@ -167,6 +191,9 @@ impl Sheet {
 
     /// Writes a formula with its result.
     pub fn formula(&mut self, row: u32, col: u32, style: Style, text: impl Into<String>, result: Cached) {
+        if let (true, Cached::Text(result)) = (style.wraps(), &result) {
+            self.make_room(row, self.width(col), result);
+        }
         self.cells.insert(Cell { row, col }, (Content::Formula(text.into(), result), style));
     }
 
@@ -176,11 +203,7 @@ impl Sheet {
         if text.is_empty() {
             return;
         }
-        let width: f64 = (col..=last).map(|c| self.width(c)).sum();
-        let lines: f64 =
-            text.lines().map(|line| (line.chars().count() as f64 * 1.05 / width).ceil().max(1.0)).sum();
-        let height = self.heights.entry(row).or_insert(15.0);
-        *height = height.max(lines.max(1.0) * 13.5 + 2.0).min(400.0);
+        self.make_room(row, (col..=last).map(|c| self.width(c)).sum(), &text);
         if last > col {
             let range = Range { first: Cell { row, col }, last: Cell { row, col: last } };
             self.merges.push((range, text.clone(), style));
@@ -193,9 +216,19 @@ impl Sheet {
         self.widths.push((first, last, width));
     }
 
-    /// Sets a row's height in points.
-    pub fn height(&mut self, row: u32, points: f64) {
-        self.heights.insert(row, points);
+    /// Makes a row high enough for a wrapped text: programs do not do it for rows of a grafted sheet.
+    fn make_room(&mut self, row: u32, width: f64, text: &str) {
+        let lines = |line: &str| (line.chars().count() as f64 * 0.9 / width).ceil().max(1.0);
+        let needed = text.lines().map(lines).sum::<f64>();
+        if needed > 1.0 {
+            let height = self.heights.entry(row).or_insert(15.0);
+            *height = height.max(needed * 13.5 + 2.0).min(400.0);
+        }
+    }
+
+    /// Prints upright instead of across.
+    pub fn upright(&mut self) {
+        self.upright = true;
     }
 
     /// Freezes the rows above `row` and the columns before `col`.
@@ -237,11 +270,12 @@ impl Sheet {
     }
 }
 
-/// Writes the sheets as a package of their own.
+/// Writes the sheets as a package of their own, with names for the whole workbook: (name, what it
+/// refers to).
 ///
 /// # Errors
 /// A number that is not finite, a formula that is too long, or a name the format does not allow.
-pub fn package(sheets: &[Sheet]) -> Result<Vec<u8>> {
+pub fn package(sheets: &[Sheet], names: &[(&str, &str)]) -> Result<Vec<u8>> {
     for sheet in sheets {
         check(sheet)?;
     }
@@ -251,6 +285,9 @@ pub fn package(sheets: &[Sheet]) -> Result<Vec<u8>> {
     let mut written = Ok(());
     for sheet in sheets {
         written = written.and_then(|()| write_sheet(&book, sheet));
+    }
+    for (name, text) in names {
+        written = written.and_then(|()| book.define_name(name, &format!("={text}")));
     }
     // Closed even after a failure: a drop would write the file all the same.
     let closed = book.close();
@@ -304,7 +341,10 @@ type Written = std::result::Result<(), xlsxwriter::XlsxError>;
 
 fn write_sheet(book: &Workbook, sheet: &Sheet) -> Written {
     let mut out = book.add_worksheet(Some(&sheet.name))?;
-    let base = Style::Text.format();
+    let largest = sheet.cells.values().filter(|(_, style)| matches!(style, Style::Money | Style::Total));
+    let largest = largest.map(|(content, _)| content.magnitude()).fold(0.0, f64::max);
+    let format = |style: Style| style.format(largest < 10_000.0);
+    let base = format(Style::Text);
     for &(first, last, width) in &sheet.widths {
         out.set_column(first as u16, last as u16, width, Some(&base))?;
     }
@@ -313,10 +353,10 @@ fn write_sheet(book: &Workbook, sheet: &Sheet) -> Written {
     }
     for (range, text, style) in &sheet.merges {
         let (a, b) = (range.first, range.last);
-        out.merge_range(a.row, a.col as u16, b.row, b.col as u16, &escaped(text), Some(&style.format()))?;
+        out.merge_range(a.row, a.col as u16, b.row, b.col as u16, &escaped(text), Some(&format(*style)))?;
     }
     for (cell, (content, style)) in &sheet.cells {
-        write_cell(&mut out, *cell, content, &style.format())?;
+        write_cell(&mut out, *cell, content, &format(*style))?;
     }
     for (cell, chart) in &sheet.charts {
         chart.insert(book, &mut out, *cell)?;
@@ -324,7 +364,11 @@ fn write_sheet(book: &Workbook, sheet: &Sheet) -> Written {
     if let Some((row, col)) = sheet.freeze {
         out.freeze_panes(row, col as u16);
     }
-    out.set_landscape();
+    if sheet.upright {
+        out.set_portrait();
+    } else {
+        out.set_landscape();
+    }
     out.set_paper(PaperType::A4);
     out.fit_to_pages(1, 0);
     out.set_footer("&L&A&RPage &P of &N")?;
@@ -344,7 +388,8 @@ fn write_cell(out: &mut Worksheet<'_>, cell: Cell, content: &Content, format: &F
             match cached {
                 Cached::Number(x) => out.write_formula_num(row, col, &text, Some(format), *x),
                 Cached::Text(s) => out.write_formula_str(row, col, &text, Some(format), &escaped(&legal(s))),
-                Cached::None => out.write_formula(row, col, &text, Some(format)),
+                // An empty result: zero would be believed by programs that do not recalculate.
+                Cached::None => out.write_formula_str(row, col, &text, Some(format), ""),
             }
         }
     }
@@ -414,7 +459,7 @@ mod tests {
     fn a_number_that_is_not_finite_is_refused_by_cell() {
         let mut sheet = Sheet::new("S");
         sheet.number(1, 2, Style::Money, f64::NAN);
-        let error = package(&[sheet]).unwrap_err();
+        let error = package(&[sheet], &[]).unwrap_err();
         assert_eq!(error.to_string(), "S!C2: the number is NaN (own-sheet)");
     }
 
@@ -431,7 +476,7 @@ mod tests {
         let mut sheet = Sheet::new("It's");
         sheet.text(0, 0, Style::Title, "_x0041_");
         sheet.formula(1, 0, Style::Money, "1+1", Cached::Number(2.0));
-        let bytes = package(&[sheet]).unwrap();
+        let bytes = package(&[sheet], &[]).unwrap();
         assert_eq!(&bytes[..2], b"PK");
     }
 }

@@ -22,14 +22,17 @@ pub fn run(args: &[&str]) -> Output {
     hence().args(args).output().expect("the program starts")
 }
 
+/// What it printed on standard output.
 pub fn stdout(output: &Output) -> String {
     String::from_utf8(output.stdout.clone()).expect("standard output is UTF-8")
 }
 
+/// What it printed on standard error.
 pub fn stderr(output: &Output) -> String {
     String::from_utf8(output.stderr.clone()).expect("standard error is UTF-8")
 }
 
+/// Its exit status.
 pub fn code(output: &Output) -> i32 {
     output.status.code().expect("the program was not killed")
 }

@@ -14,6 +14,7 @@ mod references;
 mod resolve;
 mod roles;
 mod scenario;
+mod sheets;
 mod small;
 mod stale;
 mod suggest;

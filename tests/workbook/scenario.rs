@@ -3,7 +3,7 @@
 //! Figures are made up for the test. Outcomes are worked out here from the curve's factors alone.
 
 use chrono::NaiveDate;
-use hence_core::{Basis, Catalogue, Payback, Position, Tail, Timing, Where};
+use hence_core::{Basis, Catalogue, Payback, Position, Tail, Timing, Where, internal_rates};
 use hence_workbook::appraisal::*;
 use hence_workbook::outcome::*;
 use hence_workbook::references::{Cell, Range, SheetRange};
@@ -102,7 +102,7 @@ fn option(case: &Case, sheet: &str, axis: usize, strong: f64, full: bool) -> Cho
     works.sign = -1.0;
     works.unit = 1_000.0;
     works.uplift = given(0.2, Some(cell(s, 0, 5)));
-    works.residual = Some(given(-12.0, Some(cell(s, 0, 6))));
+    works.residual = Some(given(12.0, Some(cell(s, 0, 6))));
     let saved = move |i: usize| if i < 2 { 0.0 } else { 9_000.0 * strong + 10.0 * i as f64 };
     let water = stream(case, s, 10, "water", StreamKind::Benefit, saved);
     let mut flood = stream(case, s, 11, "flood", StreamKind::Damage, |i| 5_000.0 / strong + i as f64);
@@ -220,7 +220,16 @@ pub fn outcomes(case: &Case, appraisal: &Appraisal) -> Vec<ChoiceOutcome> {
             annual: Some(npv / n),
         });
     }
-    all[1].irr = vec![0.0525];
+    // Rates of return of the increment over the baseline.
+    let flows: Vec<f64> = all[1].net.iter().zip(&all[0].net).map(|(a, b)| a - b).collect();
+    let averaged =
+        case.timing.flows == Position::Averaged && !matches!(case.labels, Labels::Dates | Labels::Offsets);
+    let ends: &[f64] = if averaged { &[0.0, 1.0] } else { &[0.0] };
+    let pairs = all[1].offsets.iter().zip(&flows);
+    let halves = pairs.flat_map(|(t, x)| ends.iter().map(move |end| (t - end, x / ends.len() as f64)));
+    let (offsets, flows): (Vec<f64>, Vec<f64>) = halves.unzip();
+    all[1].irr = internal_rates(&offsets, &flows, (-0.5, 1.0)).unwrap().rates;
+    assert_eq!(all[1].irr.len(), 1);
     all
 }
 
@@ -244,7 +253,7 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
             let scale = s.sign * s.unit * (1.0 + s.uplift.value);
             let mut flows: Vec<f64> = s.raw.iter().map(|x| x * scale).collect();
             if let Some(residual) = &s.residual {
-                *flows.last_mut().unwrap() -= residual.value * s.sign * s.unit;
+                *flows.last_mut().unwrap() -= residual.value * s.unit;
             }
             let pv_by_year: Vec<f64> = flows.iter().zip(&factors).map(|(x, d)| x * d).collect();
             let pv_tail = if s.tail.is_some() { 12_345.0 } else { 0.0 };
@@ -256,14 +265,14 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
         (0..labels.len()).map(|i| streams[1].flows[i] - streams[0].flows[i] - streams[2].flows[i]).collect();
     let pv_costs = streams[0].pv;
     let pv_benefits = streams[1].pv - streams[2].pv;
-    let service_years = length.floor() as u32;
+    let service_years = length.ceil() as u32;
     let annuity: f64 = (1..=service_years).map(|n| curve.factor(f64::from(n)).unwrap()).sum();
     ChoiceOutcome {
         basis: basis.clone(),
         timing: case.timing,
         base_words: "2026".into(),
         timing_sentence: "a flow in 2026 has factor 1.0000, in 2027 0.9662".into(),
-        forward: offsets.iter().map(|&t| (t >= 1.0).then(|| curve.forward_rate(t).unwrap())).collect(),
+        forward: offsets.iter().map(|&t| (t > 0.0).then(|| curve.forward_rate(t.ceil()).unwrap())).collect(),
         service_years,
         annuity,
         absolute: Totals {

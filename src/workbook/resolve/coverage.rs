@@ -154,9 +154,9 @@ fn lines(context: &mut Context, sheet: &str, band: Band) -> crate::problem::Resu
             }
             Value::Text(text) if across < band.first => {
                 let line = lines.entry(index).or_default();
-                // The nearest text that reads like a word; units and marks only where there is no other.
+                // The first text that reads like a word: units stand after the label; marks only where there is no other.
                 let is_word = text.chars().filter(|c| c.is_alphabetic()).count() >= 3;
-                if is_word || !line.heading_is_word {
+                if !line.heading_is_word {
                     line.heading = text.split_whitespace().collect::<Vec<_>>().join(" ");
                     line.heading_is_word = is_word;
                 }

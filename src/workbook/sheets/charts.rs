@@ -1,10 +1,9 @@
 //! The charts sheet: the factor curve, present value by era, and net present value against a flat rate.
 
-use hence_core::{Basis, Eras, Position, Where};
+use hence_core::{Basis, Eras, Where};
 
 use super::AuditInput;
 use super::rebuild::base_year;
-use crate::appraisal::Label;
 use crate::formulas::side;
 use crate::graft::{ChartFinish, Legend};
 use crate::layout::Layout;
@@ -25,6 +24,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> (Sheet, Vec<Char
     let options = input.appraisal.choices.len() as u32;
     sheet.columns(0, 0, 22.0);
     sheet.columns(1, options.max(7), 16.0);
+    sheet.upright();
     sheet.text(0, 0, Style::Title, "Audit charts");
     sheet.text(1, 0, Style::Text, "The numbers behind each chart stand below.");
     let mut finishes = Vec::new();
@@ -87,7 +87,7 @@ fn eras(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes: &mut
             sheet.number(top + k as u32, col, Style::Money, total);
         }
     }
-    table_chart(sheet, input, (TOPS[1], top, edges.len() as u32 + 1), ChartKind::Columns, title);
+    table_chart(sheet, input, (TOPS[1], top, edges.len() as u32 + 1), ChartKind::Columns, title, None);
     finishes.push(finish(title, "Years from the base", "Net present value", "General", "#,##0"));
     *row = top + edges.len() as u32 + 3;
 }
@@ -109,12 +109,14 @@ fn table_chart(
     (at, top, rows): (u32, u32, u32),
     kind: ChartKind,
     title: &str,
+    without: Option<usize>,
 ) {
     let column = |col: u32| SheetRange {
         sheet: input.names.charts.clone(),
         range: Range { first: Cell { row: top, col }, last: Cell { row: top + rows - 1, col } },
     };
-    let series = input.appraisal.choices.iter().enumerate().map(|(c, choice)| Series {
+    let options = input.appraisal.choices.iter().enumerate().filter(|(c, _)| Some(*c) != without);
+    let series = options.map(|(c, choice)| Series {
         name: choice.name.clone(),
         x: column(0),
         y: column(c as u32 + 1),
@@ -124,6 +126,8 @@ fn table_chart(
 
 fn flat_rates(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes: &mut Vec<ChartFinish>) {
     let over = input.outcomes.iter().any(|o| o.increment.is_some());
+    // The baseline itself has no increment: its column says so, and it is no line of the chart.
+    let alone = input.appraisal.baseline.filter(|&b| over && input.outcomes[b].increment.is_none());
     let title = if over {
         "Net present value over the baseline, by flat rate"
     } else {
@@ -149,14 +153,16 @@ fn flat_rates(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes
         sheet.number(top + k as u32, 0, Style::Rate, *rate);
     }
     for (c, column) in table.iter().enumerate() {
-        sheet.text(top - 1, c as u32 + 1, Style::Heading, &input.appraisal.choices[c].name);
+        let name = &input.appraisal.choices[c].name;
+        let heading = if alone == Some(c) { format!("{name} (as it stands)") } else { name.clone() };
+        sheet.text(top - 1, c as u32 + 1, Style::Heading, heading);
         for (k, value) in column.iter().enumerate() {
             if let Some(x) = value.filter(|x| x.is_finite()) {
                 sheet.number(top + k as u32, c as u32 + 1, Style::Money, x);
             }
         }
     }
-    table_chart(sheet, input, (TOPS[2], top, RATES as u32), ChartKind::Lines, title);
+    table_chart(sheet, input, (TOPS[2], top, RATES as u32), ChartKind::Lines, title, alone);
     let range = Some((0.0, 0.1));
     let base = finish(title, "Flat rate a year", "Net present value", "0%", "#,##0");
     finishes.push(ChartFinish { markers: true, x_range: range, ..base });
@@ -208,14 +214,10 @@ fn npv_at(input: &AuditInput<'_>, c: usize, rate: f64) -> Option<f64> {
     let outcome = &input.outcomes[c];
     let base_year = base_year(&choice.base.value);
     let curve = Basis::from_rate(rate).ok()?.curve(&Where { base_year, length: None }).ok()?;
-    let labels = &input.appraisal.axes[choice.axis].labels;
-    let yearly = !labels.iter().any(|l| matches!(l, Label::Offset(_) | Label::Date(_)));
-    let averaged = yearly && outcome.timing.flows == Position::Averaged;
+    let shift = super::offsets::shift(outcome.timing);
     let mut total = 0.0;
     for (t, net) in outcome.offsets.iter().zip(&outcome.net) {
-        let at = curve.factor(*t).ok()?;
-        let factor = if averaged { (at + curve.factor(t - 1.0).ok()?) / 2.0 } else { at };
-        total += net * factor;
+        total += net * curve.timed_factor(t - shift, outcome.timing).ok()?;
     }
     for stream in &choice.streams {
         let (Some(tail), Some(raw), Some(last)) = (&stream.tail, stream.raw.last(), outcome.offsets.last())
@@ -223,7 +225,9 @@ fn npv_at(input: &AuditInput<'_>, c: usize, rate: f64) -> Option<f64> {
             continue;
         };
         let flow = stream.sign * stream.unit * (1.0 + stream.uplift.value) * raw;
-        total += side(stream.kind) * tail.value.present_value(&curve, *last, flow, base_year).ok()?;
+        let (years, timing) = (last - shift, outcome.timing);
+        let tail = tail.value.timed_present_value(&curve, years, timing, flow, base_year).ok()?;
+        total += side(stream.kind) * tail;
     }
     Some(total)
 }

@@ -4,11 +4,11 @@ use super::lines::{AGREES, DIFFERS, Line, Live, col};
 use super::rebuild::Rebuilt;
 use super::{AuditInput, TargetCell, discounting::side_words, discounting::table_ref, offsets};
 use crate::appraisal::{Held, Label, StreamKind, TargetRole};
-use crate::formulas::{absolute, find, nth, refer, refer_cell, residual, scale, side};
+use crate::formulas::{absolute, nth, refer, refer_cell, residual, residual_sign, scale};
 use crate::layout::{Column, LabelValue, Layout, label_value};
 use crate::patch::Cached;
 use crate::references::{Cell, Range, SheetRange, quote_sheet};
-use crate::writer::{MAX_FORMULA, Sheet, Style};
+use crate::writer::{Sheet, Style};
 
 /// The row of column headings.
 const HEADING: u32 = 3;
@@ -31,28 +31,28 @@ pub(super) struct Checks {
 
 /// Where the parts of an option's section stand.
 #[derive(Clone, Copy)]
-struct Section {
+pub(super) struct Section {
     /// Its heading.
-    top: u32,
+    pub top: u32,
     /// The first year.
-    years: u32,
+    pub years: u32,
     /// The first stream.
-    streams: u32,
+    pub streams: u32,
     /// Costs; benefits, net, the increments and the sum of factors follow.
-    sums: u32,
+    pub sums: u32,
     /// The first target cell.
-    cells: u32,
+    pub cells: u32,
     /// The row after its end.
-    end: u32,
+    pub end: u32,
 }
 
-struct Maker<'a> {
-    input: &'a AuditInput<'a>,
-    layout: &'a Layout,
+pub(super) struct Maker<'a> {
+    pub(super) input: &'a AuditInput<'a>,
+    pub(super) layout: &'a Layout,
     rebuilt: Vec<Rebuilt>,
-    sections: Vec<Section>,
+    pub(super) sections: Vec<Section>,
     targets: Vec<Vec<&'a TargetCell>>,
-    home: &'a str,
+    pub(super) home: &'a str,
 }
 
 /// Makes the sheet.
@@ -181,7 +181,12 @@ impl<'a> Maker<'a> {
                 sheet.formula(row, col::FLOWS + s as u32, Style::Money, text, Cached::Number(raw));
             }
         }
+        sheet.text(at.top, self.net_column(c), Style::Heading, "net flow, adjusted");
         for i in 0..outcome.factors.len() {
+            if let Some((text, net)) = self.net(c, i) {
+                let row = at.years + i as u32;
+                sheet.formula(row, self.net_column(c), Style::Money, text, Cached::Number(net));
+            }
             lines.push((at.years + i as u32, self.year(c, i)));
         }
         for s in 0..choice.streams.len() {
@@ -189,7 +194,8 @@ impl<'a> Maker<'a> {
         }
         self.sums(c, lines);
         for (k, cell) in self.targets[c].iter().enumerate() {
-            lines.push((at.cells + k as u32, self.target(c, cell)));
+            let row = at.cells + k as u32;
+            lines.push((row, self.target(c, cell, row)));
         }
     }
 
@@ -230,22 +236,23 @@ impl<'a> Maker<'a> {
         line
     }
 
-    fn rebuilt(&self, c: usize) -> &Rebuilt {
+    pub(super) fn rebuilt(&self, c: usize) -> &Rebuilt {
         &self.rebuilt[self.layout.block_of[c]]
     }
 
-    fn rebuilt_factor(&self, c: usize, i: usize) -> Option<Live> {
+    pub(super) fn rebuilt_factor(&self, c: usize, i: usize) -> Option<Live> {
         let row = self.sections[c].years + i as u32;
         let rebuilt = self.rebuilt(c);
-        Some(Live::number(rebuilt.formula(&absolute_cell(row, col::OFFSET))?, rebuilt.factor(i)?))
+        let factor = rebuilt.factor(i).filter(|d| d.is_finite())?;
+        Some(Live::number(rebuilt.formula(&absolute_cell(row, col::OFFSET))?, factor))
     }
 
-    fn has_route(&self, c: usize) -> bool {
+    pub(super) fn has_route(&self, c: usize) -> bool {
         !self.input.outcomes[c].factors.is_empty() && self.rebuilt_factor(c, 0).is_some()
     }
 
     /// The present value of a stream by the second route.
-    fn rebuilt_stream(&self, c: usize, s: usize) -> Option<f64> {
+    pub(super) fn rebuilt_stream(&self, c: usize, s: usize) -> Option<f64> {
         let stream = &self.input.appraisal.choices[c].streams[s];
         let rebuilt = self.rebuilt(c);
         let multiplier = stream.sign * stream.unit * (1.0 + stream.uplift.value);
@@ -256,7 +263,7 @@ impl<'a> Maker<'a> {
         let mut total = multiplier * sum;
         if let Some(given) = &stream.residual {
             let last = rebuilt.factor(stream.raw.len().checked_sub(1)?)?;
-            total += side(stream.kind) * stream.sign * stream.unit * given.value * last;
+            total += residual_sign(stream.kind) * stream.unit * given.value * last;
         }
         Some(total + self.input.outcomes[c].streams[s].pv_tail)
     }
@@ -293,7 +300,7 @@ impl<'a> Maker<'a> {
     }
 
     /// Costs, benefits, net and the same over the baseline, by the second route.
-    fn rebuilt_sums(&self, c: usize) -> Option<[f64; 3]> {
+    pub(super) fn rebuilt_sums(&self, c: usize) -> Option<[f64; 3]> {
         let (mut costs, mut benefits) = (0.0, 0.0);
         for (s, stream) in self.input.appraisal.choices[c].streams.iter().enumerate() {
             let pv = self.rebuilt_stream(c, s)?;
@@ -382,127 +389,6 @@ impl<'a> Maker<'a> {
         }
         if text.is_empty() { "0".to_owned() } else { text }
     }
-
-    /// A filled (or compared) cell other than a factor of the years' lines.
-    fn target(&self, c: usize, cell: &TargetCell) -> Line {
-        let choice = &self.input.appraisal.choices[c];
-        let target = &choice.targets[cell.target];
-        let expected = match cell.expected {
-            Some(x) => Live::constant(x),
-            None => Live { formula: String::new(), value: Cached::Text("no number".into()) },
-        };
-        let value = match (cell.filled, cell.expected) {
-            (true, Some(x)) => Cached::Number(x),
-            (true, None) => Cached::Text("text".into()),
-            (false, _) => target.held.get(cell.index).map_or(Cached::None, held),
-        };
-        let value = match value {
-            Cached::Text(_) if cell.filled => self.text_of(c, cell),
-            value => value,
-        };
-        let at = cell.at.range.first;
-        let now = Live { formula: refer_cell(self.home, &cell.at.sheet, at), value };
-        let what = role_words(&target.role);
-        let mut line = Line::cell(place(&cell.at.sheet, at), what, expected, Some(now), cell.tolerance);
-        line.style = match target.role {
-            TargetRole::Factor => Style::Factor,
-            TargetRole::Rates | TargetRole::Irr => Style::Rate,
-            TargetRole::Ratio | TargetRole::Payback => Style::Ratio,
-            _ => Style::Money,
-        };
-        if cell.expected.is_some() {
-            line.rebuilt = self.rebuilt_target(c, cell, &target.role);
-        }
-        line
-    }
-
-    /// The text that was written where a measure has no number.
-    fn text_of(&self, c: usize, cell: &TargetCell) -> Cached {
-        let target = &self.input.appraisal.choices[c].targets[cell.target];
-        let all =
-            crate::formulas::expected(self.input.appraisal, self.input.outcomes, self.layout, c, target);
-        all.into_iter().nth(cell.index).unwrap_or(Cached::None)
-    }
-
-    fn rebuilt_target(&self, c: usize, cell: &TargetCell, role: &TargetRole) -> Option<Live> {
-        let choice = &self.input.appraisal.choices[c];
-        let at = self.sections[c];
-        let i = cell.index;
-        let refer_to = |row: u32| absolute_cell(row, col::REBUILT);
-        let shift = if self.layout.rows[c].increment.is_some() { 3 } else { 0 };
-        let sums = || match (self.layout.rows[c].increment, self.input.appraisal.baseline) {
-            (Some(_), Some(base)) => {
-                let (a, b) = (self.rebuilt_sums(c)?, self.rebuilt_sums(base)?);
-                Some([a[0] - b[0], a[1] - b[1], a[2] - b[2]])
-            }
-            _ => self.rebuilt_sums(c),
-        };
-        let sum_cell = |k: u32| refer_to(at.sums + shift + k);
-        let factor = || {
-            let row = at.years + i as u32;
-            Some((refer_to(row), self.rebuilt_factor(c, i).and_then(|_| self.rebuilt(c).factor(i))?))
-        };
-        let annuity_row = at.sums + 3 + shift;
-        match role {
-            TargetRole::Factor => factor().map(|(text, value)| Live::number(text, value)),
-            TargetRole::Rates => self.rebuilt_rate(c, i),
-            TargetRole::PvByYear(name) => {
-                let (factor_cell, d) = factor()?;
-                let mut text = String::new();
-                let mut value = 0.0;
-                for (s, stream) in choice.streams.iter().enumerate() {
-                    let sign = match name {
-                        Some(name) if find(choice, name) != Some(s) => continue,
-                        Some(_) => 1.0,
-                        None => side(stream.kind),
-                    };
-                    let flow = absolute_cell(at.years + i as u32, col::FLOWS + s as u32);
-                    text.push_str(if sign < 0.0 { "-" } else { "+" });
-                    let mut flow = format!("{}{flow}", scale(stream, self.home));
-                    let mut x = stream.sign * stream.unit * (1.0 + stream.uplift.value) * stream.raw[i];
-                    if i + 1 == stream.raw.len()
-                        && let (Some(more), Some(given)) = (residual(stream, self.home), &stream.residual)
-                    {
-                        flow.push_str(&more);
-                        x += side(stream.kind) * stream.sign * stream.unit * given.value;
-                    }
-                    text.push_str(&format!("({flow})"));
-                    value += sign * x;
-                }
-                let text = format!("({})*{factor_cell}", text.trim_start_matches('+'));
-                (text.len() <= MAX_FORMULA && text.len() > 6).then(|| Live::number(text, value * d))
-            }
-            TargetRole::PvTotal(Some(name)) => {
-                let s = find(choice, name)?;
-                let value = self.has_route(c).then(|| self.rebuilt_stream(c, s))??;
-                Some(Live::number(refer_to(at.streams + s as u32), value))
-            }
-            TargetRole::PvTotal(None) => Some(Live::number(refer_to(at.sums + 2), self.rebuilt_sums(c)?[2])),
-            TargetRole::PvCosts => Some(Live::number(sum_cell(0), sums()?[0])),
-            TargetRole::PvBenefits => Some(Live::number(sum_cell(1), sums()?[1])),
-            TargetRole::Npv => Some(Live::number(sum_cell(2), sums()?[2])),
-            TargetRole::Ratio => {
-                let sums = sums()?;
-                Some(Live::number(format!("{}/{}", sum_cell(1), sum_cell(0)), sums[1] / sums[0]))
-            }
-            TargetRole::Annual => {
-                let annuity = self.rebuilt(c).annuity(self.input.outcomes[c].service_years)?;
-                Some(Live::number(format!("{}/{}", sum_cell(2), refer_to(annuity_row)), sums()?[2] / annuity))
-            }
-            TargetRole::Irr | TargetRole::Payback => None,
-        }
-    }
-
-    /// The forward rate of a year, D(t-1)/D(t) - 1, where its offset is 1 or more.
-    fn rebuilt_rate(&self, c: usize, i: usize) -> Option<Live> {
-        let rebuilt = self.rebuilt(c);
-        let t = rebuilt.offsets[i];
-        let route = rebuilt.route.as_ref().filter(|_| !rebuilt.averaged && t >= 1.0)?;
-        let cell = absolute_cell(self.sections[c].years + i as u32, col::OFFSET);
-        let (before, at) = (rebuilt.formula(&format!("({cell}-1)"))?, rebuilt.formula(&cell)?);
-        let text = format!("({before})/({at})-1");
-        (text.len() <= MAX_FORMULA).then(|| Live::number(text, route.factor(t - 1.0) / route.factor(t) - 1.0))
-    }
 }
 
 /// The live counts of checks and of those that differ.
@@ -512,26 +398,7 @@ pub(super) fn counts(results: Range, home: &str, sheet: &str) -> (String, String
     (format!("{}+{}", count(AGREES), count(DIFFERS)), count(DIFFERS))
 }
 
-/// A role in words.
-pub(crate) fn role_words(role: &TargetRole) -> String {
-    match role {
-        TargetRole::Factor => "factor".into(),
-        TargetRole::PvByYear(None) => "PV by year: net".into(),
-        TargetRole::PvByYear(Some(name)) => format!("PV by year: {name}"),
-        TargetRole::PvTotal(None) => "PV: net".into(),
-        TargetRole::PvTotal(Some(name)) => format!("PV: {name}"),
-        TargetRole::PvCosts => "PV: costs".into(),
-        TargetRole::PvBenefits => "PV: benefits".into(),
-        TargetRole::Npv => "net present value".into(),
-        TargetRole::Ratio => "benefit-cost ratio".into(),
-        TargetRole::Annual => "annual equivalent".into(),
-        TargetRole::Irr => "internal rate of return".into(),
-        TargetRole::Payback => "discounted payback".into(),
-        TargetRole::Rates => "yearly rate".into(),
-    }
-}
-
-fn held(held: &Held) -> Cached {
+pub(super) fn held(held: &Held) -> Cached {
     match held {
         Held::Number(x) | Held::Formula { value: Some(x), .. } => Cached::Number(*x),
         Held::Text(text) => Cached::Text(text.clone()),
@@ -544,14 +411,14 @@ fn tolerance(gross: f64) -> f64 {
     (crate::formulas::FACTOR_TOLERANCE * gross).max(1e-12)
 }
 
-fn place(sheet: &str, cell: Cell) -> String {
+pub(super) fn place(sheet: &str, cell: Cell) -> String {
     format!("{}!{cell}", quote_sheet(sheet))
 }
 
-fn absolute_cell(row: u32, col: u32) -> String {
+pub(super) fn absolute_cell(row: u32, col: u32) -> String {
     absolute(Range { first: Cell { row, col }, last: Cell { row, col } })
 }
 
-fn column(col: u32, first: u32, last: u32) -> String {
+pub(super) fn column(col: u32, first: u32, last: u32) -> String {
     absolute(Range { first: Cell { row: first, col }, last: Cell { row: last, col } })
 }

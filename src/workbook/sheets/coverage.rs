@@ -59,7 +59,7 @@ pub(super) fn sheet(input: &AuditInput<'_>) -> Coverage {
             format!("IF(ISNUMBER({}),{within},\"{DIFFERS}\")", cell(5))
         };
         let result = if row.roles.is_empty() { "ties" } else { AGREES };
-        sheet.formula(at, 7, Style::Text, text, Cached::Text(result.into()));
+        sheet.formula(at, 7, Style::Result, text, Cached::Text(result.into()));
     }
     sheet.freeze(first, 1);
     sheet.repeat(HEADING, HEADING);

@@ -21,11 +21,11 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Sheet {
     }
     for (column, width) in [
         (Column::Option, 18.0),
-        (Column::Stream, 30.0),
+        (Column::Stream, 42.0),
         (Column::Side, 10.0),
         (Column::Undiscounted, 16.0),
         (Column::Tail, 16.0),
-        (Column::Value, 16.0),
+        (Column::Value, 20.0),
     ] {
         let col = layout.table + column as u32;
         sheet.columns(col, col, width);
@@ -218,12 +218,14 @@ fn measures(
     line(sheet, annual.row, "Annual equivalent");
     let text = format!("IF({annuity}>0,{}/{annuity},\"{NO_ANNUAL}\")", value(used.net));
     let result = outcome.totals().annual.map_or_else(|| Cached::Text(NO_ANNUAL.into()), Cached::Number);
-    sheet.formula(annual.row, annual.col, Style::Money, text, result);
+    let shown =
+        |result: &Cached, style| if matches!(result, Cached::Text(_)) { Style::Wrapped } else { style };
+    sheet.formula(annual.row, annual.col, shown(&result, Style::Money), text, result);
     line(sheet, ratio.row, "Benefit-cost ratio");
     let (costs, benefits, none) = (value(used.costs), value(used.benefits), no_ratio(outcome));
     let text = format!("IF({costs}>0,{benefits}/{costs},\"{none}\")");
     let result = outcome.totals().ratio.map_or_else(|| Cached::Text(none.into()), Cached::Number);
-    sheet.formula(ratio.row, ratio.col, Style::Ratio, text, result);
+    sheet.formula(ratio.row, ratio.col, shown(&result, Style::Ratio), text, result);
 }
 
 /// The sum of an option's costs, or of its benefits and net flows less damages.

@@ -159,7 +159,7 @@ impl Line {
         if !matches!(self.recorded.value, Cached::Number(_)) {
             let now = cell(col::NOW);
             let text = format!("IF(ISTEXT({now}),{})", quote(AGREES, DIFFERS));
-            sheet.formula(row, col::RESULT, Style::Text, text, result);
+            sheet.formula(row, col::RESULT, Style::Result, text, result);
             return;
         }
         let recorded = cell(col::RECORDED);
@@ -185,7 +185,7 @@ impl Line {
         let difference = cell(col::DIFFERENCE);
         let within = format!("IF({difference}<={},{})", cell(col::ALLOWED), quote(AGREES, DIFFERS));
         let text = format!("IF(ISNUMBER({difference}),{within},\"{DIFFERS}\")");
-        sheet.formula(row, col::RESULT, Style::Text, text, result);
+        sheet.formula(row, col::RESULT, Style::Result, text, result);
     }
 }
 

@@ -11,6 +11,7 @@ pub(crate) mod own;
 mod rebuild;
 mod second_route;
 mod summary;
+mod targets;
 
 use hence_core::CAUTION;
 
@@ -23,9 +24,9 @@ use crate::problem::{Problem, Result};
 use crate::references::{Cell, SheetRange};
 use crate::writer::{self, Sheet, Style};
 
-pub(crate) use checks::role_words;
 pub use own::{DIGEST, OWN, VERDICT, digest};
 pub use summary::VERDICT_AGREES;
+pub(crate) use targets::role_words;
 
 /// The visible names of hence's sheets in this workbook, chosen so that they clash with nothing.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -136,7 +137,8 @@ pub struct Built {
     pub bytes: Vec<u8>,
     /// How to finish its charts, in their order.
     pub charts: Vec<ChartFinish>,
-    /// Names that go with the sheets: the verdict cell, and the mark of ownership of each sheet.
+    /// Names to set when the sheets are grafted: the marks of ownership of each. The verdict's name and
+    /// print titles come with the package.
     pub names: Vec<NewName>,
     /// The verdict, evaluated here by the second route; the cell holds it live.
     pub verdict: String,
@@ -149,6 +151,8 @@ pub struct Built {
 pub struct Composed {
     /// Discounting, then the audit sheets.
     pub sheets: Vec<Sheet>,
+    /// What the name of the verdict cell refers to.
+    pub verdict_at: String,
     /// All else that [`build`] gives, its bytes still empty.
     pub built: Built,
 }
@@ -159,17 +163,11 @@ pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
     let coverage = coverage::sheet(input);
     let summary = summary::sheet(input, layout, &checks, &coverage);
     let (charts, finishes) = charts::sheet(input, layout);
-    let mut names = vec![NewName {
-        name: VERDICT.to_owned(),
-        scope: None,
-        text: summary::verdict_text(&summary.sheet.name, summary.cell),
-        hidden: false,
-        comment: Some("The verdict of the audit: agrees, or begins with \"differs\".".to_owned()),
-    }];
+    let verdict_at = summary::verdict_text(&summary.sheet.name, summary.cell);
     let discounting = discounting::sheet(input, layout);
     let mut sheets =
         vec![discounting, summary.sheet, coverage.sheet, checks.sheet, changes::sheet(input), charts];
-    names.extend(sheets.iter().flat_map(own::marks));
+    let names = sheets.iter().flat_map(own::marks).collect();
     for sheet in &mut sheets {
         put_back(sheet, input.carried);
     }
@@ -180,15 +178,15 @@ pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
         verdict: summary.verdict,
         checks: (checks.count + coverage.valued, checks.differing.len()),
     };
-    Composed { sheets, built }
+    Composed { sheets, verdict_at, built }
 }
 
 /// Makes the sheet Discounting and the audit sheets as a package.
 ///
 /// **Errors**: `own-sheet` where a number is not finite or a formula would be too long.
 pub fn build(input: &AuditInput<'_>, layout: &Layout) -> Result<Built> {
-    let Composed { sheets, built } = compose(input, layout);
-    Ok(Built { bytes: writer::package(&sheets)?, ..built })
+    let Composed { sheets, verdict_at, built } = compose(input, layout);
+    Ok(Built { bytes: writer::package(&sheets, &[(VERDICT, &verdict_at)])?, ..built })
 }
 
 /// Puts notes back where they stood, or in the first free row below what hence wrote there.

@@ -16,10 +16,15 @@ fn position(position: Position) -> f64 {
     }
 }
 
+/// What timing adds to the years between a flow and the base; an averaged flow counts at its year's end.
+pub(super) fn shift(timing: Timing) -> f64 {
+    position(timing.flows) - position(timing.base)
+}
+
 /// The offset of a label: (year - base year) + position of flows - position of base; for dates whole
 /// anniversaries plus days over the length of the part-year; a stated offset as it is.
 pub(super) fn rebuilt(label: &Label, base: &Base, timing: Timing) -> f64 {
-    let shift = position(timing.flows) - position(timing.base);
+    let shift = shift(timing);
     let from = f64::from(base_year(base).unwrap_or(0));
     match label {
         Label::Year(y) | Label::Financial(y, _) => f64::from(*y) - from + shift,
@@ -55,7 +60,7 @@ pub(super) fn formula(
     timing: Timing,
     home: &str,
 ) -> String {
-    let shift = position(timing.flows) - position(timing.base);
+    let shift = shift(timing);
     let plus = if shift == 0.0 { String::new() } else { format!("+{}", constant(shift)) };
     let base_cell = choice.base.at.as_ref().map(|at| refer(home, at));
     let base = match (&choice.base.value, base_cell) {

@@ -61,7 +61,7 @@ impl Rebuilt {
         let lowest = fold(f64::min, 0.0) - if averaged { 1.0 } else { 0.0 };
         let longest = block.choices.iter().map(|&c| input.outcomes[c].service_years).max().unwrap_or(0);
         let reach = fold(f64::max, 1.0).max(f64::from(longest));
-        let length = length_of(&outcome.curve.parts());
+        let length = length_of(outcome.curve.parts());
         let at = Where { base_year: base_year(&choice.base.value), length };
         let route = Route::of(outcome.basis.spec(), &at, lowest, reach);
         let factor = |route: &Route, t: f64| {
@@ -125,6 +125,11 @@ impl Rebuilt {
         let text =
             if self.averaged { format!("(({at})+({}))/2", self.sum(route, &format!("({t}-1)"))) } else { at };
         (text.len() <= MAX_FORMULA).then_some(text)
+    }
+
+    /// The formula of the factor at one moment, never averaged.
+    pub fn moment(&self, t: &str) -> Option<String> {
+        Some(self.sum(self.route.as_ref()?, t))
     }
 
     fn sum(&self, route: &Route, t: &str) -> String {
@@ -211,9 +216,11 @@ impl Rebuilt {
             Form::Rate { rule, preferences, x, .. } => {
                 let name = if *rule == Rule::Given { "rate stated" } else { "growth" };
                 given(1, name, *x);
-                given(2, "time preference and hazard", preferences.rho);
-                given(3, "elasticity", preferences.eta);
-                given(4, "standard deviation of growth", preferences.sd);
+                if *rule != Rule::Given {
+                    given(2, "time preference and hazard", preferences.rho);
+                    given(3, "elasticity", preferences.eta);
+                    given(4, "standard deviation of growth", preferences.sd);
+                }
                 let cell = |row| at(top + row, 1);
                 let text = rule.formula(&cell(1), &cell(2), &cell(3), &cell(4));
                 sheet.text(top + 5, 0, Style::Text, "rate used");
@@ -225,8 +232,10 @@ impl Rebuilt {
                 given(2, "standard deviation of the rate", *sd);
             }
             Form::Chain { rule, preferences, bands } => {
-                given(1, "time preference and hazard", preferences.rho);
-                given(2, "elasticity", preferences.eta);
+                if *rule != Rule::Given {
+                    given(1, "time preference and hazard", preferences.rho);
+                    given(2, "elasticity", preferences.eta);
+                }
                 let name = if *rule == Rule::Given { "Rate stated" } else { "Growth" };
                 headings(sheet, top + 3, &["After offset", name, "Rate"]);
                 for (i, &(lower, x)) in bands.iter().enumerate() {

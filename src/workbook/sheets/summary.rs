@@ -48,11 +48,11 @@ pub(super) fn sheet(
     sheet.text(0, 0, Style::Title, "Audit summary");
     let verdict = verdict(&mut sheet, input, checks, coverage);
     let mut page = Page { sheet, row: COUNT_DIFFERS + 2 };
-    page.from_what(input);
+    page.provenance(input);
     page.basis(input, layout);
     page.results(input, layout);
     page.checks(input, checks, coverage);
-    page.warnings(input, layout);
+    page.warnings(input);
     page.list("What differs in the file by design", input.differs);
     page.sheet.text(page.row, 0, Style::Section, "Notes of the reviewer (type below; kept at the next fill)");
     page.sheet.freeze(VERDICT + 1, 0);
@@ -128,7 +128,7 @@ impl Page {
         self.row += 1;
     }
 
-    fn from_what(&mut self, input: &AuditInput<'_>) {
+    fn provenance(&mut self, input: &AuditInput<'_>) {
         let meta = input.meta;
         self.section("What, from what");
         self.pair("Workbook", &meta.input_name);
@@ -167,7 +167,7 @@ impl Page {
         }
         self.row += 1;
         self.totals(input, layout);
-        self.measures(input, layout);
+        self.measures(input);
         self.row += 1;
         for choice in &input.appraisal.choices {
             let names = |wanted: &[StreamKind]| {
@@ -237,7 +237,7 @@ impl Page {
         }
     }
 
-    fn measures(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+    fn measures(&mut self, input: &AuditInput<'_>) {
         let each = |page: &mut Page, label: &str, put: &dyn Fn(&mut Sheet, u32, u32, usize)| {
             page.sheet.text(page.row, 0, Style::Wrapped, label);
             for c in 0..input.outcomes.len() {
@@ -282,16 +282,6 @@ impl Page {
             });
         }
         self.effects(input);
-        let lives: Vec<u32> = input.outcomes.iter().map(|o| o.service_years).collect();
-        let declining = layout.blocks.iter().any(|b| {
-            let rates: Vec<f64> = input.outcomes[b.choice].forward.iter().copied().flatten().collect();
-            rates.windows(2).any(|pair| pair[1] < pair[0] - 1e-9)
-        });
-        if declining && lives.windows(2).any(|pair| pair[0] != pair[1]) {
-            let text = "Annual equivalents of unequal lives are not comparable under a declining rate.";
-            self.sheet.paragraph(self.row, 0, LAST, Style::Strong, text);
-            self.row += 1;
-        }
     }
 
     fn effects(&mut self, input: &AuditInput<'_>) {
@@ -337,18 +327,12 @@ impl Page {
         self.row += 2;
     }
 
-    fn warnings(&mut self, input: &AuditInput<'_>, layout: &Layout) {
+    fn warnings(&mut self, input: &AuditInput<'_>) {
         let mut texts: Vec<String> = Vec::new();
-        for block in &layout.blocks {
-            texts.extend(input.outcomes[block.choice].basis.warnings());
-            texts.extend(input.outcomes[block.choice].curve.warnings());
-        }
         for problem in input.problems {
             let hint = problem.hint.as_ref().map(|hint| format!(" Try: {hint}")).unwrap_or_default();
             texts.push(format!("{problem}{hint}"));
         }
-        let mut seen = std::collections::BTreeSet::new();
-        texts.retain(|text| seen.insert(text.clone()));
         if texts.is_empty() {
             texts.push("None.".to_owned());
         }

@@ -33,7 +33,7 @@ pub struct Chart {
     pub kind: ChartKind,
     /// Its title.
     pub title: String,
-    /// Its series; a chart without any is not written.
+    /// Its series, at least one.
     pub series: Vec<Series>,
 }
 
