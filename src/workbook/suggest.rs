@@ -35,7 +35,7 @@ pub struct Guess {
 /// Finds the years, the flows, the factors and the results of a workbook that has no names yet.
 ///
 /// # Returns
-/// Guesses in sheet order, the years of a sheet first. Roles that the workbook already names are left out. Where
+/// Guesses in sheet order, the years of a sheet first. Roles and cells that the workbook already names are left out. Where
 /// several sheets hold flows, each is taken for an option and its names end in `__<sheet>`. Rows whose
 /// headings say nothing and whose signs say nothing are not guessed.
 ///
@@ -43,7 +43,7 @@ pub struct Guess {
 /// Only where cells cannot be read.
 pub fn suggest(package: &Package, book: &Workbook) -> Result<Vec<Guess>> {
     let mut sheets = Sheets::open(package, book)?;
-    let (known, own) = already(book);
+    let (known, at, own) = already(book);
     let mut found = Vec::new();
     for sheet in book.sheets.iter().filter(|sheet| sheet.kind == SheetKind::Worksheet) {
         if own.contains(&sheet.name) {
@@ -69,9 +69,10 @@ pub fn suggest(package: &Package, book: &Workbook) -> Result<Vec<Guess>> {
             }
             let suffix = option.as_ref().map(|option| format!("__{option}")).unwrap_or_default();
             let name = format!("{}{}{suffix}", roles::PREFIX, guess.word());
+            let covered = at.iter().any(|at| at.sheet == sheet && at.range.intersects(&guess.range));
             let reads_back =
                 roles::parse_name(&name).is_some_and(|read| read.is_ok_and(|read| read.role == guess.role));
-            if reads_back && taken.insert(key(&name)) {
+            if !covered && reads_back && taken.insert(key(&name)) {
                 let at = SheetRange { sheet: sheet.clone(), range: guess.range };
                 named.push(Guess { name, at, why: guess.why });
             }
@@ -80,19 +81,21 @@ pub fn suggest(package: &Package, book: &Workbook) -> Result<Vec<Guess>> {
     Ok(named)
 }
 
-/// The names there are, and the sheets that are hence's own.
-fn already(book: &Workbook) -> (BTreeSet<String>, BTreeSet<String>) {
-    let (mut known, mut own) = (BTreeSet::new(), BTreeSet::new());
+/// The names there are, the cells that have one, and the sheets that are hence's own.
+fn already(book: &Workbook) -> (BTreeSet<String>, Vec<SheetRange>, BTreeSet<String>) {
+    let (mut known, mut cells, mut own) = (BTreeSet::new(), Vec::new(), BTreeSet::new());
     for defined in &book.names {
         let Some(Ok(name)) = roles::parse_name(&defined.name) else { continue };
         known.insert(key(&defined.name));
-        if name.role.info().way == Way::Own
-            && let crate::references::NameTarget::Cells(at) = book.resolve(defined)
-        {
-            own.insert(at.sheet);
+        if let crate::references::NameTarget::Cells(at) = book.resolve(defined) {
+            if name.role.info().way == Way::Own {
+                own.insert(at.sheet);
+            } else {
+                cells.push(at);
+            }
         }
     }
-    (known, own)
+    (known, cells, own)
 }
 
 /// A guess before it has its name.
