@@ -44,6 +44,23 @@ fn the_sample_is_filled_and_reported() {
     assert_eq!(std::fs::read_dir(folder.path()).unwrap().count(), 2, "nothing temporary is left");
 }
 
+/// LibreOffice Calc has saved the same workbook: other parts, styles and names, the same numbers.
+#[test]
+fn the_sample_saved_by_another_program_gives_the_same() {
+    let filled = |name: &str| {
+        let (_folder, book) = copy_of(name);
+        let output = run(&["fill", book.to_str().unwrap(), "--json"]);
+        assert_eq!(code(&output), 0, "{name}: {}", stderr(&output));
+        json(&output)["books"][0]["options"].as_array().expect("options").clone()
+    };
+    let (ours, theirs) = (filled("mine-drainage.xlsx"), filled("mine-drainage-libreoffice.xlsx"));
+    assert_eq!(ours.len(), 4);
+    for (a, b) in ours.iter().zip(&theirs) {
+        assert_eq!(a["option"], b["option"]);
+        assert!(close(a["npv"].as_f64().unwrap(), b["npv"].as_f64().unwrap()), "{a} {b}");
+    }
+}
+
 #[test]
 fn json_has_the_documented_shape_and_the_right_numbers() {
     let book = plan(&[]);

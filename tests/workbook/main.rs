@@ -13,6 +13,7 @@ mod preserve;
 mod references;
 mod resolve;
 mod roles;
+mod samples;
 mod scenario;
 mod sheets;
 mod small;
