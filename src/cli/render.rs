@@ -196,8 +196,10 @@ fn details(option: &OptionReport) -> String {
         list(&option.below),
         option.service_years
     ));
-    let rates: Vec<String> = option.irr.iter().map(|r| percent(*r)).collect();
+    let open = option.irr_unresolved.iter().map(|(low, _)| format!("perhaps {}", percent(*low)));
+    let rates: Vec<String> = option.irr.iter().map(|r| percent(*r)).chain(open).collect();
     text.push_str(&match rates.len() {
+        _ if option.endless => "; no internal rate of return, as flows go on for ever".to_owned(),
         0 => "; no internal rate of return between -50% and 100%".to_owned(),
         1 => format!("; internal rate of return {}", rates[0]),
         _ => format!("; internal rates of return {}", rates.join(", ")),

@@ -8,6 +8,7 @@ mod fill;
 mod help;
 mod names;
 mod outputs;
+mod readme;
 mod schedules;
 mod start;
 mod targets;

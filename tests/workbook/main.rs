@@ -1,15 +1,18 @@
 //! The workbook crate from outside: real, small and hostile workbooks.
 
 mod bare;
+mod codes;
+mod corpus;
 mod fill;
 mod formulas;
 mod graft;
 mod hostile;
+mod libreoffice;
 mod model;
 mod names_edit;
 mod package;
 mod patch;
-mod preserve;
+mod readme;
 mod references;
 mod resolve;
 mod roles;
@@ -19,4 +22,5 @@ mod sheets;
 mod small;
 mod stale;
 mod suggest;
+mod tools;
 mod verify;

@@ -408,7 +408,7 @@ fn held_contents_and_number_formats_of_targets() {
         targets[0].held,
         [
             Held::Number(1.0),
-            Held::Formula { text: "B7/1.035".to_owned(), value: Some(0.966183574879227) },
+            Held::Formula { text: "B7/1.035".to_owned(), value: Some(0.966183574879227), shown: None },
             Held::Text("x".to_owned())
         ]
     );

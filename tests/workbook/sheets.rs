@@ -374,7 +374,7 @@ fn a_cell_that_was_left_and_differs_gives_the_verdict() {
     let mut a = appraisal(&case);
     let o = outcomes(&case, &a);
     let npv = a.choices[1].targets.iter_mut().find(|t| t.role == TargetRole::Npv).unwrap();
-    npv.held = vec![Held::Formula { text: "SUM(A1:A2)".into(), value: Some(1.0) }];
+    npv.held = vec![Held::Formula { text: "SUM(A1:A2)".into(), value: Some(1.0), shown: None }];
     let audit = audit_of(a, o, &[]);
     let total = audit.composed.built.checks.0;
     assert_eq!(

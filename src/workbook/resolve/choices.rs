@@ -2,7 +2,7 @@
 
 use std::collections::BTreeMap;
 
-use crate::appraisal::{Axis, Choice};
+use crate::appraisal::{Axis, Choice, Stream, StreamKind};
 use crate::problem::{Place, Problem};
 use crate::reading::Value;
 use crate::references::SheetRange;
@@ -196,31 +196,29 @@ fn budget(context: &mut Context, split: &Split, group: &Group, choice: &Choice) 
     let shared = split.shared.contains(&named);
     let mut streams = Vec::new();
     for (text, cell) in texts::list(context, &named) {
-        match choice.streams.iter().find(|stream| key(&stream.name) == key(&text)) {
+        let is_cost = |stream: &&Stream| stream.kind == StreamKind::Cost && key(&stream.name) == key(&text);
+        match choice.streams.iter().find(is_cost) {
             Some(stream) if !streams.contains(&stream.name) => streams.push(stream.name.clone()),
             Some(_) => {}
             // A list for all options may name streams that only some of them have.
-            None if shared && has_stream(split, &text) => {}
+            None if shared && has_cost(split, &text) => {}
             None => context.report(
                 Problem::error(
                     "unknown-stream",
                     counted::place(&named.at, cell, &named.from),
-                    format!("`{text}` is no stream of the option `{}`", choice.name),
+                    format!("`{text}` is no cost of the option `{}`", choice.name),
                 )
-                .hint(format!("its streams are {}", stream_names(choice))),
+                .hint(format!("its costs are {}", names_of_kind(choice, |kind| kind == StreamKind::Cost))),
             ),
         }
     }
     streams
 }
 
-fn has_stream(split: &Split, text: &str) -> bool {
-    split
-        .groups
-        .iter()
-        .flat_map(|group| &group.named)
-        .chain(&split.shared)
-        .any(|named| named.name.role.is_stream() && named.name.stream.as_deref().map(key) == Some(key(text)))
+fn has_cost(split: &Split, text: &str) -> bool {
+    split.groups.iter().flat_map(|group| &group.named).chain(&split.shared).any(|named| {
+        named.name.role == Role::Cost && named.name.stream.as_deref().map(key) == Some(key(text))
+    })
 }
 
 /// Where every flow of every option is blank, nothing has been entered yet.
@@ -249,7 +247,12 @@ fn check_flows(context: &mut Context, split: &Split, choices: &[Choice]) {
 
 /// The names of an option's streams in one phrase.
 pub(super) fn stream_names(choice: &Choice) -> String {
-    let names: Vec<&str> = choice.streams.iter().map(|stream| stream.name.as_str()).collect();
+    names_of_kind(choice, |_| true)
+}
+
+fn names_of_kind(choice: &Choice, wanted: fn(StreamKind) -> bool) -> String {
+    let streams = choice.streams.iter().filter(|stream| wanted(stream.kind));
+    let names: Vec<&str> = streams.map(|stream| stream.name.as_str()).collect();
     if names.is_empty() { "none".to_owned() } else { names.join(", ") }
 }
 

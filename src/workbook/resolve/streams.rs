@@ -161,7 +161,21 @@ fn add_settings(context: &mut Context, split: &Split, group: &Group, stream: &mu
     if let Some(uplift) = settings::uplift(context, about(Role::Uplift)) {
         stream.uplift = uplift;
     }
-    stream.residual = about(Role::Residual).and_then(|named| settings::residual(context, named));
+    let residual = about(Role::Residual);
+    stream.residual = residual.and_then(|named| settings::residual(context, named));
+    if let (Some(named), Some(given)) = (residual, &stream.residual)
+        && given.value < 0.0
+    {
+        let effect = if stream.kind == StreamKind::Cost { "raises" } else { "lowers" };
+        context.report(
+            Problem::warning(
+                "residual-sign",
+                named.place(),
+                format!("is negative, so it {effect} the last year of `{}`", stream.name),
+            )
+            .hint("enter a value that is left over as a positive number, whatever the signs of the stream"),
+        );
+    }
     stream.tail = about(Role::Tail).and_then(|named| settings::tail(context, named));
 }
 

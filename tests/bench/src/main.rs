@@ -1,5 +1,7 @@
 //! Benchmarks: factors per second, and filling workbooks of a million cells. `bash tests/bench/run` writes RESULTS.md.
 
+/// The large workbooks, shared with the tests of the workbook crate.
+#[path = "../../workbook/large.rs"]
 mod books;
 
 use std::path::Path;
