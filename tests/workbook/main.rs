@@ -18,6 +18,7 @@ mod readme;
 mod references;
 mod resolve;
 mod roles;
+mod samples;
 mod scenario;
 mod sheets;
 mod small;
