@@ -22,6 +22,16 @@ pub struct Changes {
     pub remove: BTreeSet<String>,
 }
 
+impl Changes {
+    /// Lets go of the new bytes, which may be many; the names of what changes stay.
+    pub fn forget_contents(&mut self) {
+        self.replace
+            .values_mut()
+            .chain(self.add.iter_mut().map(|(_, bytes)| bytes))
+            .for_each(|bytes| *bytes = Vec::new());
+    }
+}
+
 /// Day and time of entries that are written: the first that the format knows, so that the same input
 /// gives the same bytes.
 const DOS_DATE: u16 = 0x0021;
