@@ -6,6 +6,8 @@ mod fill;
 mod formulas;
 mod graft;
 mod hostile;
+mod large;
+mod memory;
 mod model;
 mod names_edit;
 mod package;
