@@ -11,7 +11,7 @@ use std::path::Path;
 use std::sync::OnceLock;
 
 use hence_core::Catalogue;
-use hence_workbook::check::check_file;
+use hence_workbook::check;
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::package::Package;
 use hence_workbook::patch::{Cached, CellWrite};
@@ -121,7 +121,7 @@ fn check(bytes: &[u8]) -> Vec<String> {
     let folder = tempfile::tempdir().expect("a temporary folder");
     let path = folder.path().join("book.xlsx");
     std::fs::write(&path, bytes).expect("a temporary file");
-    match check_file(&path, &[], &catalogue()) {
+    match Package::open(&path).and_then(|package| check::check(&package, &[], &catalogue())) {
         Ok(report) if report.agrees() => Vec::new(),
         Ok(report) => report.differences.iter().map(|d| format!("{} {}", d.place, d.role)).collect(),
         Err(error) => error.problems().iter().map(ToString::to_string).collect(),

@@ -1,7 +1,8 @@
 //! Rules of precedence, warnings and limits (specification, sections 2, 3 and 6), one small workbook a rule.
 
 use hence_core::Catalogue;
-use hence_workbook::check::check_file;
+use hence_workbook::check::check;
+use hence_workbook::package::Package;
 use hence_workbook::fill::{FillRequest, Filled, fill};
 use hence_workbook::problem::Severity;
 use hence_workbook::sheets::VERDICT_AGREES;
@@ -83,7 +84,7 @@ fn a_basis_from_the_command_line_leaves_a_workbook_that_declares_what_was_used()
     let folder = tempfile::tempdir().unwrap();
     let path = folder.path().join("told.xlsx");
     std::fs::write(&path, &told.bytes).unwrap();
-    let check = check_file(&path, &[], &Catalogue::builtin()).unwrap();
+    let check = check(&Package::open(&path).unwrap(), &[], &Catalogue::builtin()).unwrap();
     assert!(check.agrees(), "{:?}", check.differences);
     // Filled again, nothing differs either.
     let package = hence_workbook::package::Package::open(&path).unwrap();
@@ -329,7 +330,7 @@ fn check_compares_what_formulas_show_and_takes_no_error_for_a_missing_result() {
         let folder = tempfile::tempdir().unwrap();
         let path = folder.path().join("held.xlsx");
         std::fs::write(&path, small.bytes()).unwrap();
-        let report = check_file(&path, &[], &Catalogue::builtin()).unwrap();
+        let report = check(&Package::open(&path).unwrap(), &[], &Catalogue::builtin()).unwrap();
         let found: Vec<String> = report.differences.iter().map(|d| d.found.clone()).collect();
         (found, report.problems.iter().filter(|p| p.code == "awaits-recalculation").count())
     };
