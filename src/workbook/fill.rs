@@ -184,6 +184,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     let mut changes = grafted.changes;
     changes.replace.extend(patched);
     let bytes = package.write(&changes)?;
+    changes.forget_contents();
     verify(
         package,
         &bytes,

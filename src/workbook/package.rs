@@ -180,6 +180,14 @@ impl Package {
         self.entry(name).map(|entry| entry.read(&self.bytes)).transpose()
     }
 
+    /// Whether two packages hold a part packed alike, and so with the same bytes.
+    pub(crate) fn packs_alike(&self, other: &Package, name: &str) -> bool {
+        match (self.entry(name), other.entry(name)) {
+            (Some(a), Some(b)) => a.packed_as(&self.bytes) == b.packed_as(&other.bytes),
+            _ => false,
+        }
+    }
+
     /// A reader of a part's bytes, for parts that need not be held whole.
     pub(crate) fn part_reader(&self, name: &str) -> Result<Option<Inflated<'_>>> {
         self.entry(name).map(|entry| entry.reader(&self.bytes)).transpose()
