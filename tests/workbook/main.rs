@@ -2,6 +2,7 @@
 
 mod bare;
 mod corpus;
+mod files;
 mod fill;
 mod formulas;
 mod graft;
