@@ -2,8 +2,8 @@
 use crate::rateline::{Positions, check_flat, in_words, is_word, positions, quoted, timing_clauses};
 use crate::schedule::is_id;
 use crate::{
-    Catalogue, Compounding, Curve, Error, ErrorKind, RateLine, Result, Schedule, ScheduleStatus, Spec,
-    Timing, Where,
+    Catalogue, Compounding, Curve, Error, ErrorKind, Position, RateLine, Result, Schedule, ScheduleStatus,
+    Spec, Timing, Where,
 };
 use serde::Deserialize;
 
@@ -116,9 +116,38 @@ impl Basis {
         self.stated.or(schedule).timing()
     }
 
+    /// The positions of flows and base that the line itself states, without those of its schedule.
+    ///
+    /// ```
+    /// use hence_core::{Basis, Catalogue, Position};
+    /// let basis = Basis::parse("uk-2003; flows middle", &Catalogue::builtin())?;
+    /// assert_eq!(basis.stated(), (Some(Position::Middle), None));
+    /// # Ok::<(), hence_core::Error>(())
+    /// ```
+    pub fn stated(&self) -> (Option<Position>, Option<Position>) {
+        (self.stated.flows, self.stated.base)
+    }
+
     /// The schedule it names, if any.
     pub fn schedule(&self) -> Option<&Schedule> {
         self.schedule.as_ref()
+    }
+
+    /// The schedule to be run beside this one, as a basis with the timing that this line states.
+    ///
+    /// **Errors**: those of [`Basis::parse`], where the catalogue does not know the schedule.
+    ///
+    /// ```
+    /// use hence_core::{Basis, Catalogue};
+    /// let catalogue = Catalogue::builtin();
+    /// let basis = Basis::parse("uk-2018; flows middle", &catalogue)?;
+    /// let beside = basis.beside(&catalogue)?.expect("a companion");
+    /// assert_eq!(beside.canonical(), "uk-2018-reduced; flows middle");
+    /// # Ok::<(), hence_core::Error>(())
+    /// ```
+    pub fn beside(&self, catalogue: &Catalogue) -> Result<Option<Self>> {
+        let Some((id, _)) = self.companion() else { return Ok(None) };
+        Basis::parse(&format!("{id}{}", timing_clauses(self.stated)), catalogue).map(Some)
     }
 
     /// The id of the schedule to be run beside this one, and the length in years beyond which.

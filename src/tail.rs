@@ -140,6 +140,52 @@ impl Tail {
         check::result("last_flow", per_unit * last_flow)
     }
 
+    /// The flows that follow the last one, one by one, up to an offset.
+    ///
+    /// **Formula**: F × (1 + x)^(k m) in the year t + k m, k = 1, 2, ..., to the tail's end.
+    ///
+    /// **Arguments**: `years_after_base`, t, the year of the last flow - the base year; `last_flow`, F, any sign;
+    /// `base_year` as in [`Tail::present_value`]; `up_to`, no flow after this many years from the base is listed, which
+    /// a tail without end needs.
+    ///
+    /// **Returns**: (years after the base, flow), in order.
+    ///
+    /// **Errors**: as [`Tail::present_value`]; `Unsupported` for more than a million flows.
+    ///
+    /// ```
+    /// let tail = hence_core::Tail::parse("every 10 years, to 30").unwrap();
+    /// assert_eq!(tail.flows(5.0, 2.0, None, 1000.0).unwrap(), [(15.0, 2.0), (25.0, 2.0)]);
+    /// ```
+    pub fn flows(
+        &self,
+        years_after_base: f64,
+        last_flow: f64,
+        base_year: Option<i32>,
+        up_to: f64,
+    ) -> Result<Vec<(f64, f64)>> {
+        self.check()?;
+        check::finite("years_after_base", years_after_base)?;
+        check::finite("last_flow", last_flow)?;
+        check::finite("up_to", up_to)?;
+        let every = f64::from(self.every);
+        let within = ((up_to - years_after_base) / every).floor().max(0.0);
+        let count = match self.further_flows(years_after_base, base_year)? {
+            Some(flows) => within.min(f64::from(flows)),
+            None => within,
+        };
+        if count > MOST {
+            let message = format!("{count} flows up to {up_to} years, allowed up to {MOST}");
+            return Err(refuse(ErrorKind::Unsupported, message).with_hint("fewer years"));
+        }
+        (1..=count as u32)
+            .map(|k| {
+                let years = f64::from(k) * every;
+                let flow = check::result("last_flow", last_flow * (1.0 + self.growth).powf(years))?;
+                Ok((years_after_base + years, flow))
+            })
+            .collect()
+    }
+
     /// How many flows follow; none is without end.
     fn further_flows(&self, last: f64, base_year: Option<i32>) -> Result<Option<u32>> {
         let Some(to) = self.to else { return Ok(None) };

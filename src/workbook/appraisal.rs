@@ -52,6 +52,9 @@ pub struct Given<T> {
     pub from: String,
 }
 
+/// Where something comes from that the command line said.
+pub const COMMAND_LINE: &str = "command line";
+
 /// The base as stated.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Base {
@@ -97,7 +100,7 @@ pub struct Stream {
     pub unit: f64,
     /// A share added (optimism bias): 0.2 is 20%, from `uplift_<stream>`.
     pub uplift: Given<f64>,
-    /// A value at the last year, in the stream's unit and sign: it lowers a cost, raises a benefit.
+    /// A value at the last year, in the stream's unit: it lowers a cost and raises anything else, whatever `signs` says.
     pub residual: Option<Given<f64>>,
     /// What follows the last year.
     pub tail: Option<Given<hence_core::Tail>>,
@@ -156,6 +159,8 @@ pub enum Held {
         text: String,
         /// Its cached value, where that is a number.
         value: Option<f64>,
+        /// Its cached text, logical value or error; nothing where it has a number or no result at all.
+        shown: Option<String>,
     },
     /// An error value.
     Error(String),
@@ -212,6 +217,28 @@ pub struct Covered {
     pub total: f64,
 }
 
+/// What a cell with a setting holds.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Stated {
+    /// A number.
+    Number(f64),
+    /// The serial number of a date.
+    Date(f64),
+    /// A text.
+    Text(String),
+}
+
+/// A cell that states something once (base, basis, timing, units and the like), so that a later change shows.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Setting {
+    /// The cell.
+    pub at: SheetRange,
+    /// The name it was found by.
+    pub from: String,
+    /// What it holds.
+    pub value: Stated,
+}
+
 /// Everything that fill and check need of a workbook.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Appraisal {
@@ -221,6 +248,8 @@ pub struct Appraisal {
     pub choices: Vec<Choice>,
     /// Which of them is the baseline.
     pub baseline: Option<usize>,
+    /// Every cell that was read for a setting, by sheet and place.
+    pub settings: Vec<Setting>,
     /// Every numeric row along the years, valued or not.
     pub coverage: Vec<Covered>,
     /// Warnings and notes found on the way.

@@ -8,7 +8,7 @@ use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::patch::Cached;
-use crate::plan::{span, words};
+use crate::plan::{same_text, span, words};
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, Severity};
 use crate::references::SheetRange;
@@ -80,6 +80,10 @@ pub fn check(package: &Package, roles: &[(String, String)], catalogue: &Catalogu
     Ok(report)
 }
 
+fn number(result: &Cached) -> Option<f64> {
+    if let Cached::Number(x) = result { Some(*x) } else { None }
+}
+
 impl CheckReport {
     fn target(&mut self, target: &Target, results: &[Cached]) {
         let mut blank = Vec::new();
@@ -88,7 +92,7 @@ impl CheckReport {
             let at = cell_of(&target.at, i);
             match (held, result) {
                 (Held::Blank, _) => blank.push(at),
-                (Held::Formula { value: None, text: _ }, Cached::Number(_)) => waiting.push(at),
+                (Held::Formula { value: None, shown: None, .. }, _) => waiting.push(at),
                 (Held::Number(found) | Held::Formula { value: Some(found), .. }, Cached::Number(x)) => {
                     if (found - x).abs() <= tolerance::of_cell(target, i, *x) {
                         self.agree += 1;
@@ -96,10 +100,15 @@ impl CheckReport {
                         self.differ(target, &at, found.to_string(), Some(*x), Some(found - x));
                     }
                 }
-                (Held::Text(found), Cached::Text(text)) if found == text => self.agree += 1,
-                (Held::Formula { value: None, .. }, _) => self.agree += 1,
-                (held, Cached::Number(x)) => self.differ(target, &at, words(held), Some(*x), None),
-                (held, _) => self.differ(target, &at, words(held), None, None),
+                (Held::Text(found) | Held::Formula { shown: Some(found), .. }, Cached::Text(text))
+                    if same_text(found, text) =>
+                {
+                    self.agree += 1;
+                }
+                (Held::Formula { shown: Some(found), .. }, result) => {
+                    self.differ(target, &at, found.clone(), number(result), None);
+                }
+                (held, result) => self.differ(target, &at, words(held), number(result), None),
             }
         }
         if let Some(place) = span(&blank) {

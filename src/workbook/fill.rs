@@ -3,7 +3,7 @@
 use std::collections::{BTreeMap, BTreeSet};
 use std::path::Path;
 
-use hence_core::{Basis, Catalogue};
+use hence_core::{Basis, Catalogue, Compounding, Spec};
 use sha2::{Digest, Sha256};
 
 use crate::appraisal::{Appraisal, Given};
@@ -17,7 +17,7 @@ use crate::patch::{CellWrite, patch_sheet};
 use crate::plan::{Plan, plan_targets};
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, WorkbookError};
-use crate::reading::Sheets;
+use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::SheetRange;
 use crate::report::{Companion, Report, option_reports};
 use crate::resolve::{Options, resolve};
@@ -118,14 +118,14 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     }
     let (outcomes, found) = value(&appraisal, catalogue)?;
     problems.extend(found);
-    let companions = companions(&appraisal, &outcomes, catalogue)?;
+    let companions = companions(&appraisal, &outcomes, catalogue, &mut problems);
     let names = SheetNames::choose(&foreign_sheets(&book, &previous));
     let layout = Layout::new(&appraisal, &outcomes, &names);
 
     let mut plan =
         plan_targets(&appraisal, &outcomes, &layout, &previous, request.formulas, request.replace_formulas);
     if let Some(basis) = stated {
-        plan_basis(&mut plan, package, &book, &appraisal, declared.as_ref(), basis)?;
+        plan_basis(&mut plan, package, &book, &appraisal, &outcomes, basis)?;
     }
     problems.append(&mut plan.problems);
     let carried = own::carried(package, &book, &previous, &names)?;
@@ -228,17 +228,17 @@ fn require_basis(
     if problems.is_empty() { Ok(()) } else { Err(problems.into()) }
 }
 
-/// The new basis goes into every cell that states the old one.
+/// The new basis goes into every cell that states the old one, and a timing that it states into the timing's cell.
 fn plan_basis(
     plan: &mut Plan,
     package: &Package,
     book: &Workbook,
     appraisal: &Appraisal,
-    declared: Option<&Appraisal>,
+    outcomes: &[ChoiceOutcome],
     basis: &str,
 ) -> Result<()> {
     let mut seen = BTreeSet::new();
-    for (i, choice) in appraisal.choices.iter().enumerate() {
+    for (choice, outcome) in appraisal.choices.iter().zip(outcomes) {
         let Some(at) = &choice.basis.at else {
             let problem = Problem::warning(
                 "no-basis-cell",
@@ -249,20 +249,78 @@ fn plan_basis(
             plan.problems.push(problem);
             continue;
         };
-        let before = declared.map(|d| d.choices[i].basis.value.clone()).unwrap_or_default();
-        if before == basis || !seen.insert(at.clone()) {
+        if let Some(timing) = &choice.timing
+            && let Some(cell) = &timing.at
+            && timing.value != outcome.timing
+            && outcome.basis.stated() != (None, None)
+            && seen.insert(cell.clone())
+        {
+            let held = cell_held(package, book, cell)?;
+            let write = CellWrite::Text(outcome.timing.to_string());
+            overwrite(plan, timing, &held, "timing", write)?;
+        }
+        if !seen.insert(at.clone()) {
             continue;
         }
-        let held = Sheets::open(package, book)?.range(at)?;
-        if held.get(at.range.first).is_some_and(|cell| cell.formula.is_some()) {
-            let message = "the basis cell holds a formula, which would be lost";
-            return Err(Problem::error("basis-formula", given_place(&choice.basis), message)
-                .hint("give the name hence_basis to the cell that the formula takes it from")
-                .into());
+        let held = cell_held(package, book, at)?;
+        if shown(&held) == basis {
+            continue;
         }
-        plan.write(at.clone(), "basis".to_owned(), before, CellWrite::Text(basis.to_owned()));
+        // Where the cell held a number, formulas may count with it: a flat yearly rate stays a number.
+        let write = match (&held.value, outcome.basis.spec()) {
+            (Value::Number(old), Spec::Flat { rate, compounding: Compounding::Yearly })
+                if outcome.basis.stated() == (None, None) && outcome.basis.schedule().is_none() =>
+            {
+                if old == rate {
+                    continue;
+                }
+                CellWrite::Number(*rate)
+            }
+            (Value::Number(_), _) => {
+                let message = "the cell held a number and now holds a text, which formulas cannot count with";
+                plan.problems.push(
+                    Problem::warning("basis-text", given_place(&choice.basis), message)
+                        .hint("look at the formulas that use the cell"),
+                );
+                CellWrite::Text(basis.to_owned())
+            }
+            _ => CellWrite::Text(basis.to_owned()),
+        };
+        overwrite(plan, &choice.basis, &held, "basis", write)?;
     }
     Ok(())
+}
+
+/// Writes into a cell that was read, unless it holds a formula.
+fn overwrite<T>(
+    plan: &mut Plan,
+    given: &Given<T>,
+    held: &ReadCell,
+    what: &str,
+    write: CellWrite,
+) -> Result<()> {
+    let Some(at) = &given.at else { return Ok(()) };
+    if held.formula.is_some() {
+        let message = format!("the {what} cell holds a formula, which would be lost");
+        return Err(Problem::error("basis-formula", given_place(given), message)
+            .hint(format!("give the name hence_{what} to the cell that the formula takes it from"))
+            .into());
+    }
+    plan.write(at.clone(), what.to_owned(), shown(held), write);
+    Ok(())
+}
+
+fn cell_held(package: &Package, book: &Workbook, at: &SheetRange) -> Result<ReadCell> {
+    let held = Sheets::open(package, book)?.range(at)?;
+    Ok(held.get(at.range.first).cloned().unwrap_or_default())
+}
+
+fn shown(held: &ReadCell) -> String {
+    match &held.value {
+        Value::Number(x) => x.to_string(),
+        Value::Text(text) => text.trim().to_owned(),
+        _ => String::new(),
+    }
 }
 
 fn given_place<T>(given: &Given<T>) -> Place {
@@ -279,34 +337,61 @@ fn foreign_sheets(book: &Workbook, previous: &[OwnSheet]) -> Vec<String> {
     sheets.filter(|(i, _)| !own.contains(i)).map(|(_, sheet)| sheet.name.clone()).collect()
 }
 
-/// Every option again under the companion of its schedule, where its years reach beyond the companion's horizon.
+/// Every option again under the companion of its schedule, where years reach beyond the companion's horizon.
+///
+/// Where one option's years do, all options on that schedule are valued beside it, so that increments over the baseline
+/// stand on one basis. A companion that cannot value the workbook is a warning.
 fn companions(
     appraisal: &Appraisal,
     outcomes: &[ChoiceOutcome],
     catalogue: &Catalogue,
-) -> Result<Vec<Option<Companion>>> {
-    let wanted: Vec<Option<String>> = outcomes
-        .iter()
-        .map(|outcome| {
-            let (id, beyond) = outcome.basis.companion()?;
-            let reach = outcome.offsets.iter().copied().fold(0.0, f64::max);
-            (reach > beyond).then(|| id.to_owned())
-        })
-        .collect();
-    if wanted.iter().all(Option::is_none) {
-        return Ok(vec![None; outcomes.len()]);
-    }
+    problems: &mut Vec<Problem>,
+) -> Vec<Option<Companion>> {
+    let reaches = |outcome: &ChoiceOutcome| {
+        let (id, beyond) = outcome.basis.companion()?;
+        let reach = outcome.offsets.iter().copied().fold(0.0, f64::max);
+        (reach > beyond).then(|| id.to_owned())
+    };
+    let wanted: BTreeSet<String> = outcomes.iter().filter_map(reaches).collect();
     let mut beside = appraisal.clone();
-    for (choice, id) in beside.choices.iter_mut().zip(&wanted) {
-        if let Some(id) = id {
-            choice.basis.value.clone_from(id);
+    let mut changed = vec![false; outcomes.len()];
+    let mut failed = |message: String| {
+        let problem = Problem::warning("companion", Place::default(), message);
+        problems.push(problem.hint("value the workbook on the companion schedule by itself, with --basis"));
+    };
+    for (i, (choice, outcome)) in beside.choices.iter_mut().zip(outcomes).enumerate() {
+        if outcome.basis.companion().is_none_or(|(id, _)| !wanted.contains(id)) {
+            continue;
+        }
+        match outcome.basis.beside(catalogue) {
+            Ok(Some(basis)) => {
+                choice.basis.value = basis.canonical();
+                changed[i] = true;
+            }
+            Ok(None) => {}
+            Err(error) => failed(format!("the schedule to be run beside is not known: {error}")),
         }
     }
-    let (outcomes, _) = value(&beside, catalogue)?;
-    let make = |(outcome, id): (&ChoiceOutcome, Option<String>)| {
-        id.map(|id| Companion { id, words: outcome.basis.words(), totals: *outcome.totals() })
-    };
-    Ok(outcomes.iter().zip(wanted).map(make).collect())
+    if !changed.contains(&true) {
+        return vec![None; outcomes.len()];
+    }
+    match value(&beside, catalogue) {
+        Ok((outcomes, _)) => {
+            let make = |(outcome, changed): (&ChoiceOutcome, bool)| {
+                let id = outcome.basis.schedule().map(|schedule| schedule.id().to_owned());
+                id.filter(|_| changed).map(|id| Companion {
+                    id,
+                    words: outcome.basis.words(),
+                    totals: *outcome.totals(),
+                })
+            };
+            outcomes.iter().zip(changed).map(make).collect()
+        }
+        Err(error) => {
+            failed(format!("the schedule to be run beside cannot value the workbook: {error}"));
+            vec![None; outcomes.len()]
+        }
+    }
 }
 
 fn meta(package: &Package, outcomes: &[ChoiceOutcome], request: &FillRequest) -> Meta {

@@ -15,6 +15,8 @@ pub const FACTOR_TOLERANCE: f64 = 1e-9;
 
 /// The text where no rate of return was found.
 pub const NO_IRR: &str = "none between -50% and 100%";
+/// The text where flows without end leave nothing to search.
+pub const ENDLESS_IRR: &str = "not searched: flows go on for ever";
 /// The text where the cumulated present value never reaches zero.
 pub const NO_PAYBACK: &str = "not paid back within the years valued";
 
@@ -115,7 +117,7 @@ pub fn analyst_factors<'a>(
     let factors = &outcomes[choice].factors;
     let usable = |(i, held): (usize, &Held)| match held {
         Held::Blank | Held::Number(_) => true,
-        Held::Formula { text, value } => {
+        Held::Formula { text, value, .. } => {
             let agrees = |v: f64| (v - factors[i]).abs() <= FACTOR_TOLERANCE * factors[i].abs();
             text.starts_with(&own) || value.is_some_and(agrees)
         }
@@ -211,9 +213,11 @@ pub fn expected(
         TargetRole::Npv => number(totals.npv),
         TargetRole::Ratio => vec![or_text(totals.ratio, no_ratio(outcome))],
         TargetRole::Annual => vec![or_text(totals.annual, NO_ANNUAL)],
-        TargetRole::Irr => vec![match outcome.irr.as_slice() {
-            [] => Cached::Text(NO_IRR.to_owned()),
-            [rate] => Cached::Number(*rate),
+        TargetRole::Irr => vec![match (outcome.irr.as_slice(), outcome.irr_unresolved.as_slice()) {
+            _ if outcome.endless => Cached::Text(ENDLESS_IRR.to_owned()),
+            ([], []) => Cached::Text(NO_IRR.to_owned()),
+            ([rate], []) => Cached::Number(*rate),
+            ([], _) => Cached::Text(format!("not settled: see {}", layout.names.summary)),
             _ => Cached::Text(format!("several rates: see {}", layout.names.summary)),
         }],
         TargetRole::Payback => vec![match (outcome.payback.first, outcome.payback.last) {
@@ -226,8 +230,8 @@ pub fn expected(
 
 /// Whether a text in a target cell is one that a fill writes where a measure has no number.
 pub fn is_own_text(text: &str) -> bool {
-    [NO_IRR, NO_PAYBACK, NO_ANNUAL].contains(&text)
-        || ["no ratio: ", "several rates: see ", "several crossings: see "]
+    [NO_IRR, ENDLESS_IRR, NO_PAYBACK, NO_ANNUAL].contains(&text)
+        || ["no ratio: ", "several rates: see ", "not settled: see ", "several crossings: see "]
             .iter()
             .any(|own| text.starts_with(own))
 }

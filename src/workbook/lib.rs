@@ -5,10 +5,13 @@
 
 pub mod appraisal;
 pub mod check;
+mod clock;
+pub mod codes;
 pub mod fill;
 pub mod formulas;
 pub mod graft;
 pub mod layout;
+mod measuring;
 pub mod model;
 pub mod names_edit;
 pub mod naming;

@@ -53,7 +53,8 @@ pub struct ChoiceOutcome {
     pub offsets: Vec<f64>,
     /// Factor of each year.
     pub factors: Vec<f64>,
-    /// Forward rate of the year that ends at each offset; none before or at offset 0.
+    /// Forward rate of the year that holds each offset; at the base and before it the first rate extends backwards.
+    /// None where the curve has none.
     pub forward: Vec<Option<f64>>,
     /// In the order of the choice's streams.
     pub streams: Vec<StreamOutcome>,
@@ -69,15 +70,19 @@ pub struct ChoiceOutcome {
     pub increment: Option<Totals>,
     /// Every internal rate of return of the net (or incremental) flows in the searched interval.
     pub irr: Vec<f64>,
-    /// Discounted payback of the net (or incremental) flows.
+    /// Narrow intervals in which the number of rates of return could not be settled.
+    pub irr_unresolved: Vec<(f64, f64)>,
+    /// Some flows go on for ever, and so no rate of return was searched for.
+    pub endless: bool,
+    /// Discounted payback of the net (or incremental) flows, those that follow the last year included.
     pub payback: Payback,
-    /// PV-weighted mean time of the gross flows, in years.
+    /// PV-weighted mean time of the gross flows, in years; none where they go on for ever.
     pub mean_time: Option<f64>,
-    /// Share of gross PV by era.
+    /// Share of gross PV by era, what follows the last year included.
     pub era_shares: Vec<f64>,
     /// NPV per unit of the constrained cost.
     pub npv_per_budget: Option<f64>,
-    /// PV of net cost per unit of each effect, undiscounted and discounted.
+    /// PV of costs (over the baseline where there is one) per unit of each effect, undiscounted and discounted.
     pub effects: Vec<(Option<f64>, Option<f64>)>,
 }
 

@@ -108,6 +108,12 @@ fn same_formula(a: &str, b: &str) -> bool {
     fold(a) == fold(b)
 }
 
+/// Whether a text found in a cell says what the text expected says: that there is no number. The analyst may say so
+/// in other words; an error value is not one, and neither is another of the texts that a fill writes.
+pub(crate) fn same_text(found: &str, expected: &str) -> bool {
+    found == expected || !(found.starts_with('#') || is_own_text(found))
+}
+
 /// What a cell held, for the changes sheet.
 pub fn words(held: &Held) -> String {
     match held {
@@ -123,31 +129,33 @@ pub fn words(held: &Held) -> String {
 struct Kept {
     texts: Vec<SheetRange>,
     waiting: Vec<SheetRange>,
-    differing: Vec<(SheetRange, f64, Cached)>,
+    differing: Vec<(SheetRange, String, Cached, Option<f64>)>,
     fresh_tick: bool,
 }
 
 impl Kept {
     /// Compares one cell; true where it enters the audit's checks.
     fn compare(&mut self, held: &Held, expected: &Cached, cell: &TargetCell) -> bool {
-        let Held::Formula { value, .. } = held else {
+        let Held::Formula { value, shown, .. } = held else {
             self.texts.push(cell.at.clone());
             return false;
         };
-        match (value, expected) {
-            (None, _) => {
-                self.waiting.push(cell.at.clone());
-                true
-            }
-            (Some(found), Cached::Number(x)) if (found - x).abs() <= cell.tolerance => {
+        match (value, shown, expected) {
+            (None, None, _) => self.waiting.push(cell.at.clone()),
+            (Some(found), _, Cached::Number(x)) if (found - x).abs() <= cell.tolerance => {
                 self.fresh_tick = true;
-                true
             }
-            (Some(found), expected) => {
-                self.differing.push((cell.at.clone(), *found, expected.clone()));
-                true
+            (None, Some(shown), Cached::Text(text)) if same_text(shown, text) => self.fresh_tick = true,
+            (value, shown, expected) => {
+                let found = value.map(|x| x.to_string()).or(shown.clone()).unwrap_or_default();
+                let difference = match expected {
+                    Cached::Number(x) => value.map(|found| found - x),
+                    _ => None,
+                };
+                self.differing.push((cell.at.clone(), found, expected.clone(), difference));
             }
         }
+        true
     }
 
     fn take_tick(&mut self) -> usize {
@@ -177,11 +185,13 @@ impl Kept {
             );
         }
         let cells: Vec<SheetRange> = self.differing.iter().map(|(at, ..)| at.clone()).collect();
-        if let (Some(place), Some((at, found, expected))) = (span(&cells), self.differing.first()) {
-            let expected = match expected {
-                Cached::Number(x) => format!("{x} (difference {})", found - x),
-                Cached::Text(text) => format!("no number: {text}"),
-                Cached::None => "no number".to_owned(),
+        if let (Some(place), Some((at, found, expected, difference))) = (span(&cells), self.differing.first())
+        {
+            let expected = match (expected, difference) {
+                (Cached::Number(x), Some(difference)) => format!("{x} (difference {difference})"),
+                (Cached::Number(x), None) => x.to_string(),
+                (Cached::Text(text), _) => format!("no number: {text}"),
+                (Cached::None, _) => "no number".to_owned(),
             };
             let message = format!(
                 "{} of {total} formulas differ from the declared basis; {} holds {found}, expected {expected}",

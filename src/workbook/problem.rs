@@ -63,7 +63,7 @@ impl fmt::Display for Place {
     }
 }
 
-/// One problem. Codes are short stable kebab words, listed in [`CODES`].
+/// One problem. Codes are short stable kebab words, listed in [`CODES`](crate::codes::CODES).
 #[derive(Clone, Debug, PartialEq, Eq, Hash)]
 pub struct Problem {
     /// The stable word.

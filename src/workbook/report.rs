@@ -56,6 +56,10 @@ pub struct OptionReport {
     pub service_years: u32,
     /// Every internal rate of return found.
     pub irr: Vec<f64>,
+    /// Narrow intervals in which the number of rates of return could not be settled.
+    pub irr_unresolved: Vec<(f64, f64)>,
+    /// Some flows go on for ever, and so no rate of return was searched for.
+    pub endless: bool,
     /// Discounted payback.
     pub payback: Payback,
     /// PV-weighted mean time of the gross flows, years.
@@ -131,6 +135,8 @@ pub(crate) fn option_reports(
             below: names(i, &|kind| kind == StreamKind::Cost),
             service_years: outcome.service_years,
             irr: outcome.irr.clone(),
+            irr_unresolved: outcome.irr_unresolved.clone(),
+            endless: outcome.endless,
             payback: outcome.payback,
             mean_time: outcome.mean_time,
             era_shares: outcome.era_shares.clone(),

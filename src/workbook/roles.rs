@@ -97,8 +97,6 @@ pub enum Way {
     Out,
     /// Set by hence itself; not for the user.
     Own,
-    /// The digest of the texts on hence's own sheets.
-    Digest,
 }
 
 /// Whether the name of a role carries the name of a stream.

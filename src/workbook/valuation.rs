@@ -1,24 +1,28 @@
 //! From what a workbook says to its numbers: every option valued on its basis, and over the baseline.
 
-use chrono::{Datelike, NaiveDate};
 use hence_core::{
-    Basis, Catalogue, Curve, DayCount, Eras, IRR_INTERVAL, Payback, Position, Timing, Where,
-    annual_equivalent, benefit_cost_ratio, discounted_payback, dot, era_shares, internal_rates, mean_time,
-    offset_of_dates, sum,
+    Basis, Catalogue, Curve, ErrorKind, Payback, Timing, Where, annual_equivalent, benefit_cost_ratio, dot,
+    sum,
 };
 
-use crate::appraisal::{Appraisal, Axis, Base, Choice, Label, Stream, StreamKind};
+use crate::appraisal::{Appraisal, COMMAND_LINE, Choice, Label, Stream, StreamKind};
+use crate::clock::{Clock, base_words, base_year, label_words, sentence};
+use crate::measuring::{Further, Moments, measure_gross, measure_net, measure_units};
 use crate::outcome::{ChoiceOutcome, StreamOutcome, Totals};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::references::{Cell, Range, SheetRange};
+use crate::roles::key;
 
 /// Values every option; all problems are reported together.
 pub fn value(appraisal: &Appraisal, catalogue: &Catalogue) -> Result<(Vec<ChoiceOutcome>, Vec<Problem>)> {
     let mut problems = Vec::new();
-    let mut outcomes = Vec::new();
+    let (mut outcomes, mut moments) = (Vec::new(), Vec::new());
     for choice in &appraisal.choices {
         match value_choice(appraisal, choice, catalogue, &mut problems) {
-            Ok(outcome) => outcomes.push(outcome),
+            Ok((outcome, own)) => {
+                outcomes.push(outcome);
+                moments.push(own);
+            }
             Err(error) => problems.extend(error.problems().iter().cloned()),
         }
     }
@@ -27,14 +31,39 @@ pub fn value(appraisal: &Appraisal, catalogue: &Catalogue) -> Result<(Vec<Choice
     }
     if let Some(baseline) = appraisal.baseline {
         let base = outcomes[baseline].clone();
-        for (i, outcome) in outcomes.iter_mut().enumerate() {
-            if i != baseline {
-                increment(outcome, &base, &appraisal.choices[i], &appraisal.choices[baseline], &mut problems);
-            }
+        let base_choice = &appraisal.choices[baseline];
+        for (i, outcome) in outcomes.iter_mut().enumerate().filter(|(i, _)| *i != baseline) {
+            let choice = &appraisal.choices[i];
+            outcome.increment = Some(increment(outcome, &base));
+            measure_net(outcome, &moments[i].less(&moments[baseline]));
+            measure_units(outcome, choice, Some((&base, base_choice)));
+            warn_baseline(outcome, &base, choice, base_choice, &mut problems);
         }
+    }
+    for (choice, outcome) in appraisal.choices.iter().zip(&outcomes) {
+        problems.extend(overflow(choice, outcome));
+    }
+    if problems.iter().any(|p| p.code == TOO_LARGE) {
+        return Err(WorkbookError::from(problems));
     }
     warn_unequal_lives(appraisal, &outcomes, &mut problems);
     Ok((outcomes, problems))
+}
+
+/// The code of a result that no number can hold.
+const TOO_LARGE: &str = "not-finite";
+
+fn too_large(place: Place, what: &str) -> Problem {
+    Problem::error(TOO_LARGE, place, format!("{what} is too large to be held as a number"))
+        .hint("look for a slip in units or a stray large number")
+}
+
+/// Sums of numbers that can be held may be too large themselves.
+fn overflow(choice: &Choice, outcome: &ChoiceOutcome) -> Option<Problem> {
+    let sums = |t: &Totals| [t.benefits, t.costs, t.pv_benefits, t.pv_costs, t.npv, t.benefits - t.costs];
+    let totals = std::iter::once(&outcome.absolute).chain(&outcome.increment);
+    let whole = totals.flat_map(sums).chain(outcome.net.iter().copied()).all(f64::is_finite);
+    (!whole).then(|| too_large(Place::name(&choice.name), "a total of the option"))
 }
 
 /// The place of what was given: its cell, else where it came from.
@@ -68,174 +97,49 @@ pub(crate) fn cell_of(at: &SheetRange, index: usize) -> SheetRange {
     SheetRange { sheet: at.sheet.clone(), range: Range { first: cell, last: cell } }
 }
 
-/// Timing in force: the cell beats the line, the line its schedule; a disagreement is a warning.
+/// Timing in force: the command line beats the cell, the cell the line, the line its schedule; a disagreement is a
+/// warning.
 fn timing_in_force(choice: &Choice, basis: &Basis, problems: &mut Vec<Problem>) -> Timing {
-    match (&choice.timing, basis.timing()) {
-        (Some(cell), Some(line)) => {
-            if cell.value != line {
-                problems.push(
-                    Problem::warning(
-                        "timing-differs",
-                        place_of(&cell.at, &cell.from),
-                        format!("says {}, while the basis says {line}; the first is used", cell.value),
-                    )
-                    .hint("make the two agree, or leave one out"),
-                );
-            }
-            cell.value
-        }
-        (Some(cell), None) => cell.value,
-        (None, Some(line)) => line,
-        (None, None) => Timing::default(),
-    }
-}
-
-/// Years from the base year to each label, and whether timing still applies to them.
-fn years_after_base(axis: &Axis, base: &Base) -> Result<(Vec<f64>, bool)> {
-    let mut problems = Vec::new();
-    let mut years = Vec::with_capacity(axis.labels.len());
-    let mut timed = true;
-    for (i, label) in axis.labels.iter().enumerate() {
-        let place = || {
-            let at = cell_of(&axis.at, i);
-            Place::cells(&at.sheet, at.range)
-        };
-        let value = match (label, base) {
-            (Label::Offset(t), _) => {
-                timed = false;
-                Ok(*t)
-            }
-            (Label::Number(n), _) => Ok(f64::from(*n)),
-            (Label::Year(y), Base::Year(b)) => Ok(f64::from(y - b)),
-            (Label::Financial(y, _), Base::Financial(b)) => Ok(f64::from(y - b)),
-            (Label::Date(date), Base::Date(b)) => {
-                timed = false;
-                offset_of_dates(*b, *date, DayCount::Anniversary).map_err(|e| from_core(&e, place()))
-            }
-            _ => Err(Problem::error(
-                "base-kind",
-                place(),
-                format!("the year is {}, while the base is {}", label_kind(label), base_kind(base)),
-            )
-            .hint("state the base in the same kind as the years")),
-        };
-        match value {
-            Ok(value) => years.push(value),
-            Err(problem) => {
-                problems.push(problem);
-                break;
-            }
-        }
-    }
-    if problems.is_empty() { Ok((years, timed)) } else { Err(problems.into()) }
-}
-
-fn label_kind(label: &Label) -> &'static str {
-    match label {
-        Label::Year(_) => "a calendar year",
-        Label::Number(_) => "a year number",
-        Label::Financial(..) => "a financial year",
-        Label::Date(_) => "a date",
-        Label::Offset(_) => "an offset",
-    }
-}
-
-fn base_kind(base: &Base) -> &'static str {
-    match base {
-        Base::Year(_) => "a calendar year",
-        Base::Financial(_) => "a financial year",
-        Base::Date(_) => "a date",
-        Base::Zero => "year number 0",
-    }
-}
-
-/// The base in words.
-pub fn base_words(base: &Base) -> String {
-    match base {
-        Base::Year(year) => year.to_string(),
-        Base::Financial(year) => format!("{year}/{:02}", (year + 1).rem_euclid(100)),
-        Base::Date(date) => date_words(*date),
-        Base::Zero => "year 0".to_owned(),
-    }
-}
-
-fn date_words(date: NaiveDate) -> String {
-    const MONTHS: [&str; 12] = [
-        "January",
-        "February",
-        "March",
-        "April",
-        "May",
-        "June",
-        "July",
-        "August",
-        "September",
-        "October",
-        "November",
-        "December",
-    ];
-    format!("{} {} {}", date.day(), MONTHS[date.month0() as usize], date.year())
-}
-
-/// A label in words.
-pub fn label_words(label: &Label) -> String {
-    match label {
-        Label::Year(year) => year.to_string(),
-        Label::Number(n) => format!("year {n}"),
-        Label::Financial(_, text) => text.clone(),
-        Label::Date(date) => date_words(*date),
-        Label::Offset(t) => format!("offset {t}"),
-    }
-}
-
-fn base_year(base: &Base) -> Option<i32> {
-    match base {
-        Base::Year(year) | Base::Financial(year) => Some(*year),
-        Base::Date(date) => Some(date.year()),
-        Base::Zero => None,
-    }
-}
-
-/// The offsets in force: `offsets` are those of the flows (their ends where averaged).
-struct Clock {
-    timing: Timing,
-    timed: bool,
-    years: Vec<f64>,
-    offsets: Vec<f64>,
-}
-
-impl Clock {
-    fn new(axis: &Axis, base: &Base, timing: Timing) -> Result<Self> {
-        let (years, timed) = years_after_base(axis, base)?;
-        // Dates and offsets say themselves where the flow stands.
-        let timing = if timed { timing } else { Timing::default() };
-        let shift = shift_of(timing);
-        let offsets = years.iter().map(|y| y + shift).collect();
-        Ok(Clock { timing, timed, years, offsets })
-    }
-
-    fn factor(&self, curve: &Curve, i: usize) -> hence_core::Result<f64> {
-        curve.timed_factor(self.years[i], self.timing)
-    }
-
-    /// The flows as an internal rate sees them: an averaged flow stands half at each end of its year.
-    fn dated_flows(&self, flows: &[f64]) -> (Vec<f64>, Vec<f64>) {
-        if self.timing.flows != Position::Averaged {
-            return (self.offsets.clone(), flows.to_vec());
-        }
-        let ends = self.offsets.iter().zip(flows);
-        ends.flat_map(|(t, x)| [(t - 1.0, x / 2.0), (*t, x / 2.0)]).unzip()
-    }
-}
-
-/// Position of the flows less position of the base; an averaged flow counts at its year's end.
-fn shift_of(timing: Timing) -> f64 {
-    let position = |p: Position| match p {
-        Position::Start => 0.0,
-        Position::Middle => 0.5,
-        Position::End | Position::Averaged => 1.0,
+    let line = basis.timing();
+    let Some(cell) = &choice.timing else { return line.unwrap_or_default() };
+    let (flows, base) = basis.stated();
+    let told = choice.basis.from == COMMAND_LINE && (flows.is_some() || base.is_some());
+    let (timing, words) = if told {
+        let told = Timing { flows: flows.unwrap_or(cell.value.flows), base: base.unwrap_or(cell.value.base) };
+        (told, format!("the command line says {told}: the command line counts"))
+    } else {
+        let words = line.map(|line| format!("the basis says {line}: the cell counts"));
+        (cell.value, words.unwrap_or_default())
     };
-    position(timing.flows) - position(timing.base)
+    let other = if told { Some(timing) } else { line };
+    if other.is_some_and(|other| other != cell.value) {
+        problems.push(
+            Problem::warning(
+                "timing-differs",
+                place_of(&cell.at, &cell.from),
+                format!("says {}, while {words}", cell.value),
+            )
+            .hint("make the two agree, or leave one out"),
+        );
+    }
+    timing
+}
+
+/// A timing that was stated and cannot apply, as dates and offsets say themselves where a flow stands.
+fn warn_timing(choice: &Choice, timing: Timing, basis: &Basis, clock: &Clock, problems: &mut Vec<Problem>) {
+    let stated = choice.timing.is_some() || basis.stated() != (None, None);
+    if clock.timed || !stated || timing == Timing::default() {
+        return;
+    }
+    let place = match &choice.timing {
+        Some(cell) => place_of(&cell.at, &cell.from),
+        None => place_of(&choice.basis.at, &choice.basis.from),
+    };
+    let message = format!("{timing} does not apply: dates and offsets say themselves where a flow stands");
+    push_once(
+        problems,
+        Problem::warning("timing-ignored", place, message).hint("leave the timing out, or give years"),
+    );
 }
 
 fn value_choice(
@@ -243,7 +147,7 @@ fn value_choice(
     choice: &Choice,
     catalogue: &Catalogue,
     problems: &mut Vec<Problem>,
-) -> Result<ChoiceOutcome> {
+) -> Result<(ChoiceOutcome, Moments)> {
     let axis = &appraisal.axes[choice.axis];
     let basis_place = || place_of(&choice.basis.at, &choice.basis.from);
     let basis =
@@ -253,8 +157,8 @@ fn value_choice(
     }
     let timing = timing_in_force(choice, &basis, problems);
     let clock = Clock::new(axis, &choice.base.value, timing)?;
-    let length = clock.offsets.iter().copied().fold(0.0, f64::max);
-    let at = Where { base_year: base_year(&choice.base.value), length: Some(length) };
+    warn_timing(choice, timing, &basis, &clock, problems);
+    let at = Where { base_year: base_year(&choice.base.value), length: Some(clock.length()) };
     let curve = basis.curve(&at).map_err(|error| from_core(&error, basis_place()))?;
     for warning in curve.warnings() {
         push_once(problems, Problem::warning("curve-note", basis_place(), warning));
@@ -267,18 +171,19 @@ fn value_choice(
         })?;
         factors.push(factor);
     }
-    let forward = clock
-        .offsets
-        .iter()
-        .map(|t| if *t > 0.0 { curve.forward_rate(t.ceil()).ok() } else { None })
-        .collect();
-    let mut streams = Vec::new();
+    let (mut streams, mut further) = (Vec::new(), Vec::new());
     for stream in &choice.streams {
-        streams.push(value_stream(stream, &clock, &curve, &factors, base_year(&choice.base.value))?);
+        let tail_base = tail_base(&axis.labels, &clock, choice);
+        let (outcome, later) = value_stream(stream, &clock, &curve, &factors, tail_base)?;
+        streams.push(outcome);
+        further.push(later);
     }
-    let service_years = length.ceil().max(1.0) as u32;
-    let (_, annuity) =
-        annual_equivalent(&curve, 0.0, service_years).map_err(|error| from_core(&error, basis_place()))?;
+    // Rounding in an offset must not add a year.
+    let service_years = (clock.length() - 1e-9).ceil().max(0.0) as u32;
+    let annuity = match service_years {
+        0 => 0.0,
+        n => annual_equivalent(&curve, 0.0, n).map_err(|error| from_core(&error, basis_place()))?.1,
+    };
     let absolute = totals(choice, &streams, annuity);
     let net = net_flows(choice, &streams, clock.offsets.len());
     let mut outcome = ChoiceOutcome {
@@ -286,12 +191,14 @@ fn value_choice(
         timing_sentence: sentence(axis, &clock, &factors),
         timing: clock.timing,
         offsets: clock.offsets.clone(),
-        forward,
+        forward: clock.offsets.iter().map(|t| yearly_rate(&curve, *t)).collect(),
         service_years,
         annuity,
         absolute,
         increment: None,
         irr: Vec::new(),
+        irr_unresolved: Vec::new(),
+        endless: false,
         payback: Payback::default(),
         mean_time: None,
         era_shares: Vec::new(),
@@ -303,10 +210,28 @@ fn value_choice(
         basis,
         curve,
     };
-    measure_net(&mut outcome, &clock);
-    measure_gross(&mut outcome);
+    let moments = Moments::of(choice, &outcome, &further, &clock);
+    measure_net(&mut outcome, &moments);
+    measure_gross(&mut outcome, &further, &clock);
     measure_units(&mut outcome, choice, None);
-    Ok(outcome)
+    Ok((outcome, moments))
+}
+
+/// The forward rate of the year that holds an offset. At the base and before it the first rate extends backwards,
+/// where the curve itself does not say.
+fn yearly_rate(curve: &Curve, t: f64) -> Option<f64> {
+    match curve.forward_rate(t.ceil()) {
+        Err(error) if t <= 0.0 && error.kind() == ErrorKind::OutsideDomain => curve.forward_rate(1.0).ok(),
+        rate => rate.ok(),
+    }
+}
+
+/// The base year from which the end of a tail counts: where years are dates, such that the end is a year of theirs.
+fn tail_base(labels: &[Label], clock: &Clock, choice: &Choice) -> Option<i32> {
+    match (labels.last(), clock.years.last()) {
+        (Some(Label::Date(date)), Some(years)) => Some(chrono::Datelike::year(date) - years.ceil() as i32),
+        _ => base_year(&choice.base.value),
+    }
 }
 
 fn push_once(problems: &mut Vec<Problem>, problem: Problem) {
@@ -315,22 +240,13 @@ fn push_once(problems: &mut Vec<Problem>, problem: Problem) {
     }
 }
 
-/// "a flow in 2026 has factor 1.0000, in 2027 0.9662".
-fn sentence(axis: &Axis, clock: &Clock, factors: &[f64]) -> String {
-    let mut text = format!("a flow in {} has factor {:.4}", label_words(&axis.labels[0]), factors[0]);
-    if let (Some(label), Some(factor)) = (axis.labels.get(1), factors.get(1)) {
-        text.push_str(&format!(", in {} {factor:.4}", label_words(label)));
-    }
-    if clock.timed { format!("{}: {text}", clock.timing) } else { text }
-}
-
 fn value_stream(
     stream: &Stream,
     clock: &Clock,
     curve: &Curve,
     factors: &[f64],
     base_year: Option<i32>,
-) -> Result<StreamOutcome> {
+) -> Result<(StreamOutcome, Further)> {
     let scale = stream.sign * stream.unit * (1.0 + stream.uplift.value);
     let mut flows: Vec<f64> = stream.raw.iter().map(|x| x * scale).collect();
     let last = flows.len() - 1;
@@ -339,24 +255,44 @@ fn value_stream(
         let amount = residual.value * stream.unit;
         flows[last] += if stream.kind == StreamKind::Cost { -amount } else { amount };
     }
-    let pv_tail = match &stream.tail {
-        None => 0.0,
-        Some(tail) => tail
-            .value
-            .timed_present_value(curve, clock.years[last], clock.timing, last_flow, base_year)
-            .map_err(|error| from_core(&error, place_of(&tail.at, &tail.from)))?,
+    let place = || Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+    if !flows.iter().all(|x| x.is_finite()) {
+        return Err(too_large(place(), "a flow").into());
+    }
+    let (pv_tail, further) = match &stream.tail {
+        None => (0.0, Further::default()),
+        Some(tail) => {
+            let failed = |error: hence_core::Error| from_core(&error, place_of(&tail.at, &tail.from));
+            let years = clock.years[last];
+            let value = tail.value.timed_present_value(curve, years, clock.timing, last_flow, base_year);
+            let further = Further::of(stream, last_flow, clock, curve, base_year);
+            (value.map_err(failed)?, further.map_err(failed)?)
+        }
     };
     let pv_by_year: Vec<f64> = flows.iter().zip(factors).map(|(x, d)| x * d).collect();
     let pv = sum(&[dot(&flows, factors), pv_tail]);
     let outcome = StreamOutcome { undiscounted: sum(&flows), flows, pv_by_year, pv_tail, pv };
     if outcome.pv.is_finite() && outcome.undiscounted.is_finite() {
-        Ok(outcome)
+        Ok((outcome, further))
     } else {
-        let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
-        Err(Problem::error("not-finite", place, "the present value is too large to be held as a number")
-            .hint("look for a slip in units or a stray large number")
-            .into())
+        Err(too_large(place(), "the present value").into())
     }
+}
+
+/// Net present value of an option as it stands on another curve.
+pub(crate) fn npv_on(appraisal: &Appraisal, choice: &Choice, curve: &Curve, timing: Timing) -> Result<f64> {
+    let axis = &appraisal.axes[choice.axis];
+    let clock = Clock::new(axis, &choice.base.value, timing)?;
+    let factors: hence_core::Result<Vec<f64>> =
+        (0..clock.offsets.len()).map(|i| clock.factor(curve, i)).collect();
+    let factors = factors.map_err(|error| from_core(&error, Place::name(&choice.name)))?;
+    let tail_base = tail_base(&axis.labels, &clock, choice);
+    let mut terms = Vec::new();
+    for stream in &choice.streams {
+        let (above, below) = side(stream.kind);
+        terms.push((above - below) * value_stream(stream, &clock, curve, &factors, tail_base)?.0.pv);
+    }
+    Ok(sum(&terms))
 }
 
 /// The part of a stream that stands above (benefits) or below (costs) the line: (benefit, cost) signs.
@@ -418,97 +354,56 @@ fn net_flows(choice: &Choice, streams: &[StreamOutcome], years: usize) -> Vec<f6
         .collect()
 }
 
-/// Rates of return and payback of the net flows.
-fn measure_net(outcome: &mut ChoiceOutcome, clock: &Clock) {
-    let (offsets, flows) = clock.dated_flows(&outcome.net);
-    outcome.irr = internal_rates(&offsets, &flows, IRR_INTERVAL).map(|found| found.rates).unwrap_or_default();
-    let pv: Vec<f64> = outcome.net.iter().zip(&outcome.factors).map(|(x, d)| x * d).collect();
-    outcome.payback = discounted_payback(&outcome.offsets, &pv).unwrap_or_default();
-}
-
-/// Mean time and era shares of the gross present values.
-fn measure_gross(outcome: &mut ChoiceOutcome) {
-    let gross: Vec<f64> = (0..outcome.offsets.len())
-        .map(|i| sum(&outcome.streams.iter().map(|s| s.pv_by_year[i].abs()).collect::<Vec<_>>()))
-        .collect();
-    outcome.mean_time = mean_time(&outcome.offsets, &gross).ok();
-    outcome.era_shares = era_shares(&outcome.offsets, &gross, &Eras::default()).unwrap_or_default();
-}
-
-/// NPV per unit of the constrained cost, cost per unit of each effect; over the baseline where given.
-fn measure_units(outcome: &mut ChoiceOutcome, choice: &Choice, baseline: Option<(&ChoiceOutcome, &Choice)>) {
-    let budget = |outcome: &ChoiceOutcome, choice: &Choice, names: &[String]| {
-        let streams = choice.streams.iter().zip(&outcome.streams);
-        sum(&streams.filter(|(s, _)| names.contains(&s.name)).map(|(_, o)| o.pv).collect::<Vec<_>>())
+/// The totals over the baseline.
+fn increment(outcome: &ChoiceOutcome, base: &ChoiceOutcome) -> Totals {
+    let (own, base) = (&outcome.absolute, &base.absolute);
+    let less = Totals {
+        benefits: own.benefits - base.benefits,
+        costs: own.costs - base.costs,
+        pv_benefits: own.pv_benefits - base.pv_benefits,
+        pv_costs: own.pv_costs - base.pv_costs,
+        ..Totals::default()
     };
-    let mut spent = budget(outcome, choice, &choice.budget);
-    if let Some((base, base_choice)) = baseline {
-        spent -= budget(base, base_choice, &choice.budget);
-    }
-    outcome.npv_per_budget = (!choice.budget.is_empty() && spent > 0.0).then(|| outcome.totals().npv / spent);
-    let cost = outcome.totals().pv_costs;
-    let per_unit = |quantity: f64| (quantity != 0.0).then(|| cost / quantity);
-    outcome.effects = choice
-        .effects
-        .iter()
-        .map(|effect| {
-            let mut plain = sum(&effect.raw);
-            let mut discounted = dot(&effect.raw, &outcome.factors);
-            if let Some((base, base_choice)) = baseline
-                && let Some(same) = base_choice.effects.iter().find(|e| e.name == effect.name)
-            {
-                plain -= sum(&same.raw);
-                discounted -= dot(&same.raw, &base.factors);
-            }
-            (per_unit(plain), per_unit(discounted))
-        })
-        .collect();
+    finish_totals(less, outcome.annuity)
 }
 
-/// Sets the increments of an option over the baseline, and what is measured on them.
-fn increment(
-    outcome: &mut ChoiceOutcome,
+/// What keeps an increment over the baseline from having a plain meaning.
+fn warn_baseline(
+    outcome: &ChoiceOutcome,
     base: &ChoiceOutcome,
     choice: &Choice,
     base_choice: &Choice,
     problems: &mut Vec<Problem>,
 ) {
-    let less = Totals {
-        benefits: outcome.absolute.benefits - base.absolute.benefits,
-        costs: outcome.absolute.costs - base.absolute.costs,
-        pv_benefits: outcome.absolute.pv_benefits - base.absolute.pv_benefits,
-        pv_costs: outcome.absolute.pv_costs - base.absolute.pv_costs,
-        ..Totals::default()
-    };
-    outcome.increment = Some(finish_totals(less, outcome.annuity));
-    if outcome.basis != base.basis || outcome.base_words != base.base_words {
+    if outcome.basis != base.basis || outcome.base_words != base.base_words || outcome.timing != base.timing {
         problems.push(
             Problem::warning(
                 "baseline-basis",
                 Place::name(&choice.name),
-                format!("its basis or base year is not that of the baseline {:?}", base_choice.name),
+                format!("its basis, base or timing is not that of the baseline `{}`", base_choice.name),
             )
             .hint("value both on one basis from one base year, or the increment has no meaning"),
         );
     }
-    // Years of the two may differ: flows are matched by their offsets.
-    let mut flows: std::collections::BTreeMap<i64, (f64, f64, f64)> = std::collections::BTreeMap::new();
-    let key = |t: f64| (t * 1e6).round() as i64;
-    for (o, sign) in [(&*outcome, 1.0), (base, -1.0)] {
-        for (i, t) in o.offsets.iter().enumerate() {
-            let entry = flows.entry(key(*t)).or_insert((*t, 0.0, 0.0));
-            entry.1 += sign * o.net[i];
-            entry.2 += sign * o.net[i] * o.factors[i];
+    // A damage that one side does not state would count as wholly avoided, or wholly new.
+    for (has, lacks) in [(base_choice, choice), (choice, base_choice)] {
+        let damages = |choice: &Choice| {
+            let damages = choice.streams.iter().filter(|s| s.kind == StreamKind::Damage);
+            damages.map(|s| (key(&s.name), s.name.clone())).collect::<Vec<_>>()
+        };
+        let known = damages(lacks);
+        for (id, name) in damages(has).into_iter().filter(|(id, _)| known.iter().all(|k| k.0 != *id)) {
+            let message = format!(
+                "`{}` has the damage `{name}`, `{}` has no damage of that name: it counts as 0 there",
+                has.name, lacks.name
+            );
+            push_once(
+                problems,
+                Problem::warning("baseline-damage", Place::name(&choice.name), message)
+                    .hint(format!("name the cells hence_damage_{id} of both, zeros included")),
+            );
         }
     }
-    let offsets: Vec<f64> = flows.values().map(|v| v.0).collect();
-    let net: Vec<f64> = flows.values().map(|v| v.1).collect();
-    let pv: Vec<f64> = flows.values().map(|v| v.2).collect();
-    let clock = Clock { timing: outcome.timing, timed: true, years: Vec::new(), offsets: offsets.clone() };
-    let (dated, dated_net) = clock.dated_flows(&net);
-    outcome.irr = internal_rates(&dated, &dated_net, IRR_INTERVAL).map(|f| f.rates).unwrap_or_default();
-    outcome.payback = discounted_payback(&offsets, &pv).unwrap_or_default();
-    measure_units(outcome, choice, Some((base, base_choice)));
 }
 
 /// Annual equivalents over unequal lives are not comparable under a declining curve.

@@ -116,9 +116,9 @@ fn factor_cells_that_disagree_are_not_used() {
     let layout = Layout::new(&a, &o, &SheetNames::choose(&[]));
     let own = "INDEX(Discounting!$D$8:$D$17,MATCH(D$4,Discounting!$A$8:$A$17,0))";
     for (held, used) in [
-        (Held::Formula { text: "1/1.04".into(), value: Some(1.0 / 1.04) }, false),
-        (Held::Formula { text: "1/1.035".into(), value: Some(1.0 / 1.035) }, true),
-        (Held::Formula { text: own.into(), value: None }, true),
+        (Held::Formula { text: "1/1.04".into(), value: Some(1.0 / 1.04), shown: None }, false),
+        (Held::Formula { text: "1/1.035".into(), value: Some(1.0 / 1.035), shown: None }, true),
+        (Held::Formula { text: own.into(), value: None, shown: None }, true),
         (Held::Text("n/a".into()), false),
     ] {
         a.choices[1].targets[0].held[1] = held.clone();

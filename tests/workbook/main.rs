@@ -1,6 +1,7 @@
 //! The workbook crate from outside: real, small and hostile workbooks.
 
 mod bare;
+mod codes;
 mod corpus;
 mod files;
 mod fill;
@@ -8,14 +9,19 @@ mod formulas;
 mod graft;
 mod hostile;
 mod large;
+mod libreoffice;
 mod memory;
 mod model;
 mod names_edit;
+mod numbers;
+mod own;
 mod package;
 mod patch;
+mod readme;
 mod references;
 mod resolve;
 mod roles;
+mod samples;
 mod scenario;
 mod sheets;
 mod small;

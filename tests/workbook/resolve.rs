@@ -359,7 +359,16 @@ fn faults_of_blocks() {
     };
     assert_eq!(block("", "B5:D6"), ["block-shape Plan!B5:D6 [hence_costs]"]);
     assert_eq!(block("A6: 'Works | 1 | 2 | 3", "A5:D6"), ["block-label Plan!B6:D6 [Works]"]);
-    assert_eq!(block("A5: 'Works\nA6: 'Pumps", "A5:D6"), ["block-empty Plan!A5:D6 [hence_costs]"]);
+    assert_eq!(
+        block("A5: 'Works\nA6: 'Pumps", "A5:D6"),
+        ["block-empty Plan!A5:D6 [hence_costs]", "no-flows Plan!A5:D6 [hence_costs]"]
+    );
+    let beside = named("A6: 'Pumps", "hence_benefit_access, hence_costs A6:D6");
+    assert_eq!(
+        beside.problems(),
+        ["block-empty Plan!A6:D6 [hence_costs]"],
+        "a warning where other flows are entered"
+    );
     assert_eq!(block("", "A4:D5"), [""; 0], "the years may head the block");
     assert_eq!(block("A6: | 1 | 2 | 3", "A5:D6"), ["block-label Plan!A6 [hence_costs]"]);
     assert_eq!(block("A6: 'Pumps | 1 | 'x | 3", "A5:D6"), ["text-value Plan!C6 [Pumps]"]);
@@ -399,7 +408,7 @@ fn held_contents_and_number_formats_of_targets() {
         targets[0].held,
         [
             Held::Number(1.0),
-            Held::Formula { text: "B7/1.035".to_owned(), value: Some(0.966183574879227) },
+            Held::Formula { text: "B7/1.035".to_owned(), value: Some(0.966183574879227), shown: None },
             Held::Text("x".to_owned())
         ]
     );

@@ -168,6 +168,7 @@ pub fn appraisal(case: &Case) -> Appraisal {
         })
         .collect();
     Appraisal {
+        settings: Vec::new(),
         axes: names.iter().map(|s| axis(s)).collect(),
         choices,
         baseline: Some(0),
@@ -286,6 +287,8 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
         },
         increment: None,
         irr: Vec::new(),
+        irr_unresolved: Vec::new(),
+        endless: false,
         payback: Payback { first: Some(6.5), last: Some(6.5) },
         mean_time: Some(17.0),
         era_shares: vec![0.8, 0.2, 0.0],

@@ -79,8 +79,8 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
     }
     if streams.is_empty() && !context.failed() {
         context.report(
-            Problem::error("block-empty", named.place(), "holds no stream")
-                .hint("let the block cover the labels and the numbers of its streams"),
+            Problem::warning("block-empty", named.place(), "holds no numbers and counts for nothing")
+                .hint("enter the flows, or let the block cover the labels and the numbers of its streams"),
         );
     }
     streams
@@ -172,7 +172,7 @@ fn label(context: &mut Context, named: &Named, line: &Line) -> Option<String> {
 fn is_years(line: &Line, axis: &Axis) -> bool {
     line.cells.iter().zip(&axis.labels).all(|((_, cell), label)| match (&cell.value, label) {
         (Value::Number(n), Label::Year(year) | Label::Number(year)) => *n == f64::from(*year),
-        (Value::Text(text), Label::Financial(_, year)) => text.trim() == year,
+        (Value::Text(text), Label::Financial(_, year)) => text.trim() == year.trim(),
         (Value::Date(_), Label::Date(_)) => true,
         _ => false,
     })

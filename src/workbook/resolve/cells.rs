@@ -1,5 +1,6 @@
 //! What single cells may hold: numbers, and why something else is not one.
 
+use crate::appraisal::{Setting, Stated};
 use crate::problem::{Place, Problem};
 use crate::reading::{Grid, ReadCell, Value};
 use crate::references::{Cell, Range, SheetRange};
@@ -81,7 +82,7 @@ pub(super) fn numbers(context: &mut Context, grid: &Grid, called: &str) -> Numbe
     read
 }
 
-/// The one cell of a role that takes one, or nothing after a report.
+/// The one cell of a role that takes one, or nothing after a report. What it states is kept for the audit.
 pub(super) fn single(context: &mut Context, named: &Named) -> Option<ReadCell> {
     if named.at.range.first != named.at.range.last {
         context.report(
@@ -105,6 +106,16 @@ pub(super) fn single(context: &mut Context, named: &Named) -> Option<ReadCell> {
     if let Value::Error(error) = &cell.value {
         context.report(error_value(error, named.place()));
         return None;
+    }
+    let value = match &cell.value {
+        Value::Number(number) => Some(Stated::Number(*number)),
+        Value::Date(serial) => Some(Stated::Date(*serial)),
+        Value::Text(text) => Some(Stated::Text(text.clone())),
+        Value::Blank | Value::Bool(_) | Value::Error(_) => None,
+    };
+    if let Some(value) = value {
+        let setting = Setting { at: named.at.clone(), from: named.from.clone(), value };
+        context.settings.insert((named.at.sheet.clone(), named.at.range.first), setting);
     }
     Some(cell)
 }

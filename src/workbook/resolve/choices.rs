@@ -2,8 +2,9 @@
 
 use std::collections::BTreeMap;
 
-use crate::appraisal::{Axis, Choice};
+use crate::appraisal::{Axis, Choice, Stream, StreamKind};
 use crate::problem::{Place, Problem};
+use crate::reading::Value;
 use crate::references::SheetRange;
 use crate::roles::{ROLES, Role, key};
 
@@ -46,6 +47,7 @@ pub(super) fn build(context: &mut Context, split: &Split, told: Option<&str>) ->
         targets::add_shared(context, split, &mut built.choices, &built.axes);
         check_settings(context, split, &built.choices);
         built.baseline = baseline(context, split);
+        check_flows(context, split, &built.choices);
     }
     targets::check(context, &built.choices, &built.axes);
     built
@@ -154,7 +156,7 @@ fn report_missing(context: &mut Context, split: &Split, told: Option<&str>) {
 fn needs_base(context: &mut Context, years: &Named) -> bool {
     let first =
         context.grid(&years.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()));
-    !matches!(first, Some(crate::reading::Value::Number(n)) if n < 1000.0)
+    !matches!(first, Some(Value::Number(n)) if n < 1000.0)
 }
 
 /// Roles that are missing, and the names that would say them.
@@ -194,36 +196,63 @@ fn budget(context: &mut Context, split: &Split, group: &Group, choice: &Choice) 
     let shared = split.shared.contains(&named);
     let mut streams = Vec::new();
     for (text, cell) in texts::list(context, &named) {
-        match choice.streams.iter().find(|stream| key(&stream.name) == key(&text)) {
+        let is_cost = |stream: &&Stream| stream.kind == StreamKind::Cost && key(&stream.name) == key(&text);
+        match choice.streams.iter().find(is_cost) {
             Some(stream) if !streams.contains(&stream.name) => streams.push(stream.name.clone()),
             Some(_) => {}
             // A list for all options may name streams that only some of them have.
-            None if shared && has_stream(split, &text) => {}
+            None if shared && has_cost(split, &text) => {}
             None => context.report(
                 Problem::error(
                     "unknown-stream",
                     counted::place(&named.at, cell, &named.from),
-                    format!("`{text}` is no stream of the option `{}`", choice.name),
+                    format!("`{text}` is no cost of the option `{}`", choice.name),
                 )
-                .hint(format!("its streams are {}", stream_names(choice))),
+                .hint(format!("its costs are {}", names_of_kind(choice, |kind| kind == StreamKind::Cost))),
             ),
         }
     }
     streams
 }
 
-fn has_stream(split: &Split, text: &str) -> bool {
-    split
-        .groups
-        .iter()
-        .flat_map(|group| &group.named)
-        .chain(&split.shared)
-        .any(|named| named.name.role.is_stream() && named.name.stream.as_deref().map(key) == Some(key(text)))
+fn has_cost(split: &Split, text: &str) -> bool {
+    split.groups.iter().flat_map(|group| &group.named).chain(&split.shared).any(|named| {
+        named.name.role == Role::Cost && named.name.stream.as_deref().map(key) == Some(key(text))
+    })
+}
+
+/// Where every flow of every option is blank, nothing has been entered yet.
+fn check_flows(context: &mut Context, split: &Split, choices: &[Choice]) {
+    let streams = || choices.iter().flat_map(|choice| &choice.streams);
+    let entered = streams().any(|stream| {
+        stream.residual.is_some()
+            || context.grid(&stream.at).is_some_and(|grid| {
+                grid.iter().any(|(_, cell)| cell.value != Value::Blank || cell.formula.is_some())
+            })
+    });
+    if entered || context.failed() {
+        return;
+    }
+    let mut all = split.groups.iter().flat_map(|group| &group.named).chain(&split.shared);
+    let place = all.find(|named| named.name.role.is_stream()).map_or_else(Place::default, Named::place);
+    context.report(
+        Problem::error(
+            "no-flows",
+            place,
+            "every cell of every stream is blank: there is nothing to value yet",
+        )
+        .hint("enter the flows, one amount a year, and save the workbook"),
+    );
 }
 
 /// The names of an option's streams in one phrase.
 pub(super) fn stream_names(choice: &Choice) -> String {
-    let names: Vec<&str> = choice.streams.iter().map(|stream| stream.name.as_str()).collect();
+    names_of_kind(choice, |_| true)
+}
+
+fn names_of_kind(choice: &Choice, wanted: fn(StreamKind) -> bool) -> String {
+    let streams = choice.streams.iter().filter(|stream| wanted(stream.kind));
+    let names: Vec<&str> = streams.map(|stream| stream.name.as_str()).collect();
     if names.is_empty() { "none".to_owned() } else { names.join(", ") }
 }
 

@@ -17,12 +17,12 @@ mod years;
 use std::collections::{BTreeMap, BTreeSet};
 use std::rc::Rc;
 
-use crate::appraisal::Appraisal;
+use crate::appraisal::{Appraisal, Setting};
 use crate::model::{SheetFacts, Workbook};
 use crate::package::Package;
 use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
 use crate::reading::{Grid, Sheets};
-use crate::references::{Range, SheetRange};
+use crate::references::{Cell, Range, SheetRange};
 
 pub(crate) use counted::sum_of;
 pub use report::{Found, NamesReport, names};
@@ -68,7 +68,8 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
     }
     let problems = context.sorted();
     let choices::Built { axes, choices, baseline } = built;
-    Ok(Appraisal { axes, choices, baseline, coverage, problems, date1904: book.date1904 })
+    let settings = std::mem::take(&mut context.settings).into_values().collect();
+    Ok(Appraisal { axes, choices, baseline, settings, coverage, problems, date1904: book.date1904 })
 }
 
 /// What every step needs: the workbook, its cells, and the list of what was found wrong.
@@ -77,6 +78,7 @@ struct Context<'a> {
     book: &'a Workbook,
     sheets: Sheets<'a>,
     facts: BTreeMap<String, Rc<SheetFacts>>,
+    settings: BTreeMap<(String, Cell), Setting>,
     problems: Vec<Problem>,
 }
 
@@ -89,7 +91,7 @@ impl<'a> Context<'a> {
             crate::roles::parse_name(name).is_some()
         };
         let problems = book.problems.iter().filter(ours).cloned().collect();
-        Ok(Context { package, book, sheets, facts: BTreeMap::new(), problems })
+        Ok(Context { package, book, sheets, facts: BTreeMap::new(), settings: BTreeMap::new(), problems })
     }
 
     /// What a sheet holds besides values; nothing where it cannot be read, which is reported.

@@ -2,7 +2,7 @@
 
 use hence_core::{Tail, Timing};
 
-use crate::appraisal::{Given, StreamKind};
+use crate::appraisal::{COMMAND_LINE, Given, StreamKind};
 use crate::problem::{Place, Problem};
 use crate::reading::Value;
 
@@ -51,7 +51,7 @@ pub(super) fn basis(
         }
     }
     let at = named.map(|named| named.at.clone());
-    Some(Given { value: told.trim().to_owned(), at, from: "command line".to_owned() })
+    Some(Given { value: told.trim().to_owned(), at, from: COMMAND_LINE.to_owned() })
 }
 
 fn basis_text(context: &mut Context, named: &Named) -> Option<String> {

@@ -89,14 +89,16 @@ fn row(context: &mut Context, named: &Named, axis: &Axis) -> Option<Vec<f64>> {
             Problem::warning("stream-blank", named.place(), "is blank in every year and counts as 0")
                 .hint("enter the flows, or check what the name refers to"),
         );
-    } else {
-        for cell in read.blanks {
-            context.report(note(
-                "blank-zero",
-                place(&named.at, cell, &named.from),
-                "is blank and counts as 0",
-            ));
-        }
+    } else if !read.blanks.is_empty() {
+        let verbs = if read.blanks.len() == 1 { ("is", "counts") } else { ("are", "count") };
+        let message = format!(
+            "{} of {} cells {} blank and {} as 0",
+            read.blanks.len(),
+            read.values.len(),
+            verbs.0,
+            verbs.1
+        );
+        context.report(note("blank-zero", named.place(), message));
     }
     Some(read.values)
 }
@@ -159,7 +161,21 @@ fn add_settings(context: &mut Context, split: &Split, group: &Group, stream: &mu
     if let Some(uplift) = settings::uplift(context, about(Role::Uplift)) {
         stream.uplift = uplift;
     }
-    stream.residual = about(Role::Residual).and_then(|named| settings::residual(context, named));
+    let residual = about(Role::Residual);
+    stream.residual = residual.and_then(|named| settings::residual(context, named));
+    if let (Some(named), Some(given)) = (residual, &stream.residual)
+        && given.value < 0.0
+    {
+        let effect = if stream.kind == StreamKind::Cost { "raises" } else { "lowers" };
+        context.report(
+            Problem::warning(
+                "residual-sign",
+                named.place(),
+                format!("is negative, so it {effect} the last year of `{}`", stream.name),
+            )
+            .hint("enter a value that is left over as a positive number, whatever the signs of the stream"),
+        );
+    }
     stream.tail = about(Role::Tail).and_then(|named| settings::tail(context, named));
 }
 

@@ -143,11 +143,13 @@ fn stream_of(context: &mut Context, named: &Named, choice: &Choice) -> Option<Op
 
 fn held(cell: &ReadCell) -> Held {
     if let Some(text) = &cell.formula {
-        let value = match cell.value {
-            Value::Number(number) | Value::Date(number) => Some(number),
-            _ => None,
+        let (value, shown) = match &cell.value {
+            Value::Number(number) | Value::Date(number) => (Some(*number), None),
+            Value::Text(text) | Value::Error(text) => (None, Some(text.clone())),
+            Value::Bool(truth) => (None, Some(if *truth { "TRUE" } else { "FALSE" }.to_owned())),
+            Value::Blank => (None, None),
         };
-        return Held::Formula { text: text.clone(), value };
+        return Held::Formula { text: text.clone(), value, shown };
     }
     match &cell.value {
         Value::Blank => Held::Blank,

@@ -92,7 +92,8 @@ fn label(content: &ReadCell, date1904: bool, place: Place) -> Checked<Label> {
             None => wrong(format!("is no date (stored {serial})")).hint("enter a date with its year"),
         },
         Value::Text(text) => match parse_financial_year(text.trim()) {
-            Ok(year) => return Ok(Label::Financial(year, text.trim().to_owned())),
+            // As it stands in the cell, so that a look-up by the cell finds it.
+            Ok(year) => return Ok(Label::Financial(year, text.clone())),
             Err(_) if text_as_number(text).is_some() => Problem::error(
                 "text-number",
                 place,
@@ -181,7 +182,7 @@ fn kind(label: &Label) -> &'static str {
 fn words(label: &Label) -> String {
     match label {
         Label::Year(year) | Label::Number(year) => year.to_string(),
-        Label::Financial(_, text) => text.clone(),
+        Label::Financial(_, text) => text.trim().to_owned(),
         Label::Date(date) => date.format("%-d %B %Y").to_string(),
         Label::Offset(offset) => offset.to_string(),
     }

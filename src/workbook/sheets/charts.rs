@@ -3,11 +3,11 @@
 use hence_core::{Basis, Eras, Where};
 
 use super::AuditInput;
-use super::rebuild::base_year;
-use crate::formulas::side;
+use crate::clock::base_year;
 use crate::graft::{ChartFinish, Legend};
 use crate::layout::Layout;
 use crate::references::{Cell, Range, SheetRange};
+use crate::valuation::npv_on;
 use crate::writer::{Chart, ChartKind, Series, Sheet, Style};
 
 /// Columns and rows of a chart.
@@ -211,25 +211,9 @@ pub(super) fn thousands(x: f64) -> String {
 /// Net present value of an option at a flat yearly rate; none where a tail does not converge.
 fn npv_at(input: &AuditInput<'_>, c: usize, rate: f64) -> Option<f64> {
     let choice = &input.appraisal.choices[c];
-    let outcome = &input.outcomes[c];
-    let base_year = base_year(&choice.base.value);
-    let curve = Basis::from_rate(rate).ok()?.curve(&Where { base_year, length: None }).ok()?;
-    let shift = super::offsets::shift(outcome.timing);
-    let mut total = 0.0;
-    for (t, net) in outcome.offsets.iter().zip(&outcome.net) {
-        total += net * curve.timed_factor(t - shift, outcome.timing).ok()?;
-    }
-    for stream in &choice.streams {
-        let (Some(tail), Some(raw), Some(last)) = (&stream.tail, stream.raw.last(), outcome.offsets.last())
-        else {
-            continue;
-        };
-        let flow = stream.sign * stream.unit * (1.0 + stream.uplift.value) * raw;
-        let (years, timing) = (last - shift, outcome.timing);
-        let tail = tail.value.timed_present_value(&curve, years, timing, flow, base_year).ok()?;
-        total += side(stream.kind) * tail;
-    }
-    Some(total)
+    let at = Where { base_year: base_year(&choice.base.value), length: None };
+    let curve = Basis::from_rate(rate).ok()?.curve(&at).ok()?;
+    npv_on(input.appraisal, choice, &curve, input.outcomes[c].timing).ok()
 }
 
 #[cfg(test)]

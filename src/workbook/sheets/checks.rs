@@ -2,7 +2,7 @@
 
 use super::lines::{AGREES, DIFFERS, Line, Live, col};
 use super::rebuild::Rebuilt;
-use super::{AuditInput, TargetCell, discounting::side_words, discounting::table_ref, offsets};
+use super::{AuditInput, TargetCell, discounting::side_words, discounting::table_ref, offsets, settings};
 use crate::appraisal::{Held, Label, StreamKind, TargetRole};
 use crate::formulas::{absolute, nth, refer, refer_cell, residual, residual_sign, scale};
 use crate::layout::{Column, LabelValue, Layout, label_value};
@@ -23,6 +23,8 @@ pub(super) struct Checks {
     pub results: Range,
     /// Number of checks.
     pub count: usize,
+    /// Of which are of what the workbook states.
+    pub settings: usize,
     /// Place of each check that differs, in order.
     pub differing: Vec<String>,
     /// Number of checks that have a second route.
@@ -51,6 +53,7 @@ pub(super) struct Maker<'a> {
     pub(super) layout: &'a Layout,
     rebuilt: Vec<Rebuilt>,
     pub(super) sections: Vec<Section>,
+    settings: Vec<Line>,
     targets: Vec<Vec<&'a TargetCell>>,
     pub(super) home: &'a str,
 }
@@ -63,13 +66,15 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
         layout,
         rebuilt,
         sections: Vec::new(),
+        settings: settings::lines(input, &layout.names.checks),
         targets: Vec::new(),
         home: &layout.names.checks,
     };
     make.plan();
     let mut sheet = Sheet::new(&layout.names.checks);
     head(&mut sheet, input);
-    let mut lines = Vec::new();
+    sheet.text(FIRST, 0, Style::Section, settings::HEADING);
+    let mut lines: Vec<(u32, Line)> = (FIRST + 1..).zip(make.settings.clone()).collect();
     for c in 0..input.appraisal.choices.len() {
         make.section(&mut sheet, c, &mut lines);
     }
@@ -90,6 +95,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
         sheet,
         results,
         count: lines.len(),
+        settings: make.settings.len(),
         differing: lines.iter().filter(|(_, l)| !l.agrees()).map(|(_, l)| l.place.clone()).collect(),
         independent: lines.iter().filter(|(_, l)| l.rebuilt.is_some()).count(),
     }
@@ -130,7 +136,7 @@ fn head(sheet: &mut Sheet, input: &AuditInput<'_>) {
 
 impl<'a> Maker<'a> {
     fn plan(&mut self) {
-        let mut row = FIRST;
+        let mut row = FIRST + 2 + self.settings.len() as u32;
         for (c, choice) in self.input.appraisal.choices.iter().enumerate() {
             let cells: Vec<&TargetCell> = self
                 .input
@@ -366,8 +372,8 @@ impl<'a> Maker<'a> {
         let years = outcome.service_years;
         let what = format!("Sum of factors of service years 1 to {years}");
         let block = self.rebuilt(c);
-        let text = block.annuity_formula(years).unwrap_or_default();
-        let annuity = live(text, block.annuity(years));
+        let text = block.annuity_formula().unwrap_or_default();
+        let annuity = live(text, block.annuity());
         add(next, rows.annuity, &what, outcome.annuity, tolerance(outcome.annuity), annuity);
         if let Some((_, line)) = lines.last_mut() {
             line.style = Style::Factor;
@@ -402,6 +408,7 @@ pub(super) fn held(held: &Held) -> Cached {
     match held {
         Held::Number(x) | Held::Formula { value: Some(x), .. } => Cached::Number(*x),
         Held::Text(text) => Cached::Text(text.clone()),
+        Held::Formula { shown: Some(shown), .. } if !shown.starts_with('#') => Cached::Text(shown.clone()),
         Held::Blank | Held::Error(_) | Held::Formula { value: None, .. } => Cached::None,
     }
 }

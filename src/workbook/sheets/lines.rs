@@ -76,6 +76,8 @@ pub(super) struct Line {
     pub allowed: f64,
     /// The difference is relative to what was recorded.
     pub relative: bool,
+    /// A recorded text has to stand in the cell as it is; else any text will do.
+    pub exact: bool,
     /// How the numbers look.
     pub style: Style,
 }
@@ -93,6 +95,7 @@ impl Line {
             now: None,
             allowed: FACTOR_TOLERANCE,
             relative: true,
+            exact: false,
             style: Style::Factor,
         }
     }
@@ -120,12 +123,21 @@ impl Line {
     /// that should be a number is none.
     fn judge(&self) -> (Option<f64>, bool) {
         let Cached::Number(recorded) = self.recorded.value else {
-            return (None, self.now.as_ref().is_none_or(|now| matches!(now.value, Cached::Text(_))));
+            let stands = |now: &Live| match &now.value {
+                Cached::Text(_) if self.exact => now.value == self.recorded.value,
+                value => matches!(value, Cached::Text(_)),
+            };
+            return (None, self.now.as_ref().is_none_or(stands));
         };
         let mut worst = 0.0_f64;
         for live in self.rebuilt.iter().chain(&self.now) {
             let Cached::Number(x) = live.value else { return (None, false) };
-            let difference = if self.relative { (x / recorded - 1.0).abs() } else { (x - recorded).abs() };
+            let relative = self.relative && recorded != 0.0;
+            let difference = if relative { (x / recorded - 1.0).abs() } else { (x - recorded).abs() };
+            // `max` would pass over a difference that is no number.
+            if difference.is_nan() {
+                return (None, false);
+            }
             worst = worst.max(difference);
         }
         (worst.is_finite().then_some(worst), worst <= self.allowed)
@@ -158,7 +170,11 @@ impl Line {
         let quote = |yes: &str, no: &str| format!("\"{yes}\",\"{no}\"");
         if !matches!(self.recorded.value, Cached::Number(_)) {
             let now = cell(col::NOW);
-            let text = format!("IF(ISTEXT({now}),{})", quote(AGREES, DIFFERS));
+            let test = match self.exact {
+                true => format!("EXACT(TRIM({now}),TRIM({}))", cell(col::RECORDED)),
+                false => format!("ISTEXT({now})"),
+            };
+            let text = format!("IF({test},{})", quote(AGREES, DIFFERS));
             sheet.formula(row, col::RESULT, Style::Result, text, result);
             return;
         }
@@ -173,7 +189,9 @@ impl Line {
         let terms: Vec<String> = terms
             .iter()
             .map(|x| {
-                if self.relative { format!("ABS({x}/{recorded}-1)") } else { format!("ABS({x}-{recorded})") }
+                // A factor too small for a number is recorded as 0.
+                let relative = self.relative && self.recorded.value != Cached::Number(0.0);
+                if relative { format!("ABS({x}/{recorded}-1)") } else { format!("ABS({x}-{recorded})") }
             })
             .collect();
         let text = match terms.as_slice() {

@@ -10,6 +10,7 @@ mod offsets;
 pub(crate) mod own;
 mod rebuild;
 mod second_route;
+mod settings;
 mod summary;
 mod targets;
 

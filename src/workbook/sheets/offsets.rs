@@ -37,13 +37,13 @@ pub(super) fn rebuilt(label: &Label, base: &Base, timing: Timing) -> f64 {
     }
 }
 
+/// Anniversaries of the earlier of the two dates, and days over the length of the part-year.
 fn anniversaries(base: NaiveDate, date: NaiveDate) -> f64 {
+    if date < base {
+        return -anniversaries(date, base);
+    }
     let mut years = date.year() - base.year();
-    let at = |years: i32| {
-        let months = Months::new(12 * years.unsigned_abs());
-        let moved = if years < 0 { base.checked_sub_months(months) } else { base.checked_add_months(months) };
-        moved.unwrap_or(base)
-    };
+    let at = |years: i32| base.checked_add_months(Months::new(12 * years.unsigned_abs())).unwrap_or(base);
     if at(years) > date {
         years -= 1;
     }
@@ -75,7 +75,10 @@ pub(super) fn formula(
         Label::Financial(y, text) if text.starts_with(&y.to_string()) => {
             format!("VALUE(LEFT({label_cell},4))-{base}{plus}")
         }
-        Label::Financial(y, _) => format!("{y}-{base}{plus}"),
+        // The text is compared, so that the constant counts only while the label stands.
+        Label::Financial(y, text) => {
+            format!("IF({label_cell}=\"{}\",{y},NA())-{base}{plus}", text.replace('"', "\"\""))
+        }
         Label::Date(date) => match (&choice.base.value, &choice.base.at) {
             (Base::Date(from), Some(at)) if date >= from => {
                 let base = refer(home, at);
@@ -84,7 +87,11 @@ pub(super) fn formula(
                 let end = format!("EDATE({base},12*{years}+12)");
                 format!("{years}+({label_cell}-{start})/({end}-{start})")
             }
-            (Base::Date(_), _) => constant(rebuilt(label, &choice.base.value, timing)),
+            (Base::Date(_), _) => {
+                let offset = rebuilt(label, &choice.base.value, timing);
+                let day = format!("DATE({},{},{})", date.year(), date.month(), date.day());
+                format!("IF({label_cell}={day},{},NA())", constant(offset))
+            }
             _ => format!("YEAR({label_cell})-{base}{plus}"),
         },
     }
@@ -111,5 +118,7 @@ mod tests {
         // 92 of the 366 days from 1 April 2027 to 1 April 2028.
         assert_eq!(offset(day(2026, 4, 1), day(2027, 7, 2)), 1.0 + 92.0 / 366.0);
         assert_eq!(offset(day(2026, 4, 1), day(2025, 4, 1)), -1.0);
+        // Before the base the earlier date's anniversaries count: 123 of the 366 days from 1 October 2023.
+        assert_eq!(offset(day(2024, 2, 1), day(2023, 10, 1)), -123.0 / 366.0);
     }
 }

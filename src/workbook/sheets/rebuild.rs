@@ -1,6 +1,6 @@
 //! The second route as cells: inputs, yearly chains, and the formula of a factor at an offset.
 
-use hence_core::{Parts, Where};
+use hence_core::Where;
 
 use super::second_route::{Form, Route, Rule};
 use crate::appraisal::{Base, Label};
@@ -19,6 +19,8 @@ pub(super) struct Rebuilt {
     /// Offsets rebuilt from the labels.
     pub offsets: Vec<f64>,
     factors: Option<Vec<f64>>,
+    /// N of the annual equivalent: years begun from the base to the last flow.
+    service_years: u32,
     /// Every factor is the mean of those at start and end of its year.
     pub averaged: bool,
     /// The first row of the block's inputs on the checks sheet.
@@ -38,14 +40,6 @@ pub(super) fn base_year(base: &Base) -> Option<i32> {
     }
 }
 
-fn length_of(parts: &Parts) -> Option<f64> {
-    match parts {
-        Parts::OneRate { length, .. } => Some(*length),
-        Parts::Mixture(of) => of.iter().find_map(|(_, part)| length_of(part)),
-        _ => None,
-    }
-}
-
 impl Rebuilt {
     /// The second route of block `k`.
     pub fn new(input: &AuditInput<'_>, layout: &Layout, k: usize) -> Self {
@@ -59,17 +53,18 @@ impl Rebuilt {
             && !labels.iter().any(|l| matches!(l, Label::Offset(_) | Label::Date(_)));
         let fold = |f: fn(f64, f64) -> f64, start| offsets.iter().copied().fold(start, f);
         let lowest = fold(f64::min, 0.0) - if averaged { 1.0 } else { 0.0 };
-        let longest = block.choices.iter().map(|&c| input.outcomes[c].service_years).max().unwrap_or(0);
-        let reach = fold(f64::max, 1.0).max(f64::from(longest));
-        let length = length_of(outcome.curve.parts());
-        let at = Where { base_year: base_year(&choice.base.value), length };
+        // The length of the appraisal, from these offsets alone; as many service years begin in it.
+        let length = fold(f64::max, 0.0);
+        let service_years = (length - 1e-9).ceil().max(0.0) as u32;
+        let reach = length.max(1.0).max(f64::from(service_years));
+        let at = Where { base_year: base_year(&choice.base.value), length: Some(length) };
         let route = Route::of(outcome.basis.spec(), &at, lowest, reach);
         let factor = |route: &Route, t: f64| {
             let at = route.factor(t);
             if averaged { (at + route.factor(t - 1.0)) / 2.0 } else { at }
         };
         let factors = route.as_ref().map(|route| offsets.iter().map(|&t| factor(route, t)).collect());
-        Rebuilt { route, offsets, factors, averaged, top: 0, parts: Vec::new(), grid: 0 }
+        Rebuilt { route, offsets, factors, averaged, service_years, top: 0, parts: Vec::new(), grid: 0 }
     }
 
     /// Places the inputs from row `top` down; returns the first free row.
@@ -102,14 +97,15 @@ impl Rebuilt {
     }
 
     /// The sum of rebuilt factors of service years 1 to N.
-    pub fn annuity(&self, years: u32) -> Option<f64> {
+    pub fn annuity(&self) -> Option<f64> {
         let route = self.route.as_ref()?;
-        Some((1..=years).map(|n| route.factor(f64::from(n))).sum())
+        Some((1..=self.service_years).map(|n| route.factor(f64::from(n))).sum())
     }
 
     /// The same as a formula over the grid.
-    pub fn annuity_formula(&self, years: u32) -> Option<String> {
+    pub fn annuity_formula(&self) -> Option<String> {
         let route = self.route.as_ref()?;
+        let years = self.service_years;
         if years == 0 {
             return Some("0".to_owned());
         }

@@ -8,8 +8,9 @@ use super::discounting::table_ref;
 use super::lines::DIFFERS;
 use super::{AuditInput, charts::era_words};
 use crate::appraisal::{StreamKind, TargetRole};
-use crate::formulas::{no_ratio, one, refer};
+use crate::formulas::{ENDLESS_IRR, NO_IRR, no_ratio, one, refer};
 use crate::layout::{Column, Layout};
+use crate::outcome::ChoiceOutcome;
 use crate::patch::Cached;
 use crate::references::{Cell, Range, SheetRange};
 use crate::writer::{Sheet, Style};
@@ -259,10 +260,7 @@ impl Page {
             years(sheet, row, col, input.outcomes[c].payback.last, "none");
         });
         each(self, "Internal rates of return", &|sheet, row, col, c| {
-            let rates: Vec<String> =
-                input.outcomes[c].irr.iter().map(|r| format!("{:.4}%", r * 100.0)).collect();
-            let text = if rates.is_empty() { crate::formulas::NO_IRR.to_owned() } else { rates.join("; ") };
-            sheet.text(row, col, Style::Wrapped, text);
+            sheet.text(row, col, Style::Wrapped, rates_of_return(&input.outcomes[c]));
         });
         each(self, "Mean time of gross present value (years)", &|sheet, row, col, c| {
             years(sheet, row, col, input.outcomes[c].mean_time, "none");
@@ -289,7 +287,7 @@ impl Page {
             for (effect, (plain, discounted)) in choice.effects.iter().zip(&input.outcomes[c].effects) {
                 for (words, value) in [("undiscounted", plain), ("discounted", discounted)] {
                     let Some(x) = value else { continue };
-                    let label = format!("Net cost per unit of {} ({words})", effect.name);
+                    let label = format!("Cost per unit of {} (effect {words})", effect.name);
                     self.sheet.text(self.row, 0, Style::Wrapped, label);
                     self.sheet.number(self.row, c as u32 + 1, Style::Ratio, *x);
                     self.row += 1;
@@ -307,10 +305,11 @@ impl Page {
         let factors: usize = input.outcomes.iter().map(|o| o.factors.len()).sum();
         let in_lines = input.cells.iter().filter(|cell| is_factor(input, cell)).count();
         let cells = input.cells.len() - in_lines;
-        let rest = checks.count.saturating_sub(factors + cells);
+        let rest = checks.count.saturating_sub(factors + cells + checks.settings);
         for (label, number, allowed) in [
             ("Factors: second route, Discounting, filled cells", factors, "1e-9 relative"),
             ("Present values and totals on Discounting", rest, "1e-9 of the gross present value"),
+            ("What the workbook states: base, basis, timing and the like", checks.settings, "none"),
             ("Other filled or compared cells", cells, "half of the last displayed unit, or 1e-9"),
             ("Undiscounted totals of valued rows", coverage.valued, "1e-9 relative, or 0.000001"),
         ] {
@@ -338,6 +337,20 @@ impl Page {
         }
         self.list("Warnings", &texts);
     }
+}
+
+/// Every rate of return in words, and where their number could not be settled.
+fn rates_of_return(outcome: &ChoiceOutcome) -> String {
+    if outcome.endless {
+        return ENDLESS_IRR.to_owned();
+    }
+    let percent = |rate: f64| format!("{:.4}%", rate * 100.0);
+    let found = outcome.irr.iter().map(|&rate| percent(rate));
+    let open = outcome.irr_unresolved.iter().map(|&(low, high)| {
+        format!("none, one or several at {} to {} (the flows do not settle it)", percent(low), percent(high))
+    });
+    let all: Vec<String> = found.chain(open).collect();
+    if all.is_empty() { NO_IRR.to_owned() } else { all.join("; ") }
 }
 
 fn is_factor(input: &AuditInput<'_>, cell: &super::TargetCell) -> bool {

@@ -95,7 +95,7 @@ impl Maker<'_> {
                 Some(Live::number(format!("{}/{}", sum_cell(1), sum_cell(0)), sums[1] / sums[0]))
             }
             TargetRole::Annual => {
-                let annuity = self.rebuilt(c).annuity(self.input.outcomes[c].service_years)?;
+                let annuity = self.rebuilt(c).annuity()?;
                 Some(Live::number(format!("{}/{}", sum_cell(2), refer_to(annuity_row)), sums()?[2] / annuity))
             }
             TargetRole::Irr => self.rebuilt_irr(c, cell.expected?, row),
@@ -165,6 +165,12 @@ impl Maker<'_> {
                 (each(&|t| format!("SUMPRODUCT({net},{t}*(1+{cell})^(0-{t}-1))")), slope),
             ])
         };
+        // What follows the last year is in no column here.
+        let over = self.layout.rows[c].increment.and(self.input.appraisal.baseline);
+        let tailed = |c: usize| self.input.appraisal.choices[c].streams.iter().any(|s| s.tail.is_some());
+        if std::iter::once(c).chain(over).any(tailed) {
+            return None;
+        }
         let [value, slope] = sums(c)?;
         let (text, step) = match (self.layout.rows[c].increment, self.input.appraisal.baseline) {
             (Some(_), Some(base)) => {
@@ -172,7 +178,7 @@ impl Maker<'_> {
                 let text = format!("({}-{})/({}-{})", value.0, less.0, slope.0, less_slope.0);
                 (text, (value.1 - less.1) / (slope.1 - less_slope.1))
             }
-            _ => (format!("{}/{}", value.0, slope.0), value.1 / slope.1),
+            _ => (format!("({})/({})", value.0, slope.0), value.1 / slope.1),
         };
         Some(Live::number(format!("{cell}+{text}"), rate + step))
     }

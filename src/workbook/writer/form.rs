@@ -272,9 +272,9 @@ fn write_sheet(book: &Workbook, sheet: &Form) -> Written {
     }
     out.set_paper(PaperType::A4);
     out.set_footer("&L&A&RPage &P of &N")?;
+    out.set_landscape();
     match sheet.repeat {
         Some((first, last)) => {
-            out.set_landscape();
             out.fit_to_pages(0, 1);
             out.repeat_columns(first as u16, last as u16)?;
         }

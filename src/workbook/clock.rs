@@ -1,0 +1,180 @@
+//! When the flows stand: years after the base, offsets under a timing, and both in words.
+
+use chrono::{Datelike, NaiveDate};
+use hence_core::{Curve, DayCount, Position, Timing, offset_of_dates};
+
+use crate::appraisal::{Axis, Base, Label};
+use crate::problem::{Place, Problem, Result};
+use crate::valuation::{cell_of, from_core};
+
+/// Years from the base year to each label, and whether timing still applies to them.
+fn years_after_base(axis: &Axis, base: &Base) -> Result<(Vec<f64>, bool)> {
+    let mut problems = Vec::new();
+    let mut years = Vec::with_capacity(axis.labels.len());
+    let mut timed = true;
+    for (i, label) in axis.labels.iter().enumerate() {
+        let place = || {
+            let at = cell_of(&axis.at, i);
+            Place::cells(&at.sheet, at.range)
+        };
+        let value = match (label, base) {
+            (Label::Offset(t), _) => {
+                timed = false;
+                Ok(*t)
+            }
+            (Label::Number(n), _) => Ok(f64::from(*n)),
+            (Label::Year(y), Base::Year(b)) => Ok(f64::from(y - b)),
+            (Label::Financial(y, _), Base::Financial(b)) => Ok(f64::from(y - b)),
+            (Label::Date(date), Base::Date(b)) => {
+                timed = false;
+                offset_of_dates(*b, *date, DayCount::Anniversary).map_err(|e| from_core(&e, place()))
+            }
+            _ => Err(Problem::error(
+                "base-kind",
+                place(),
+                format!("the year is {}, while the base is {}", label_kind(label), base_kind(base)),
+            )
+            .hint("state the base in the same kind as the years")),
+        };
+        match value {
+            Ok(value) => years.push(value),
+            Err(problem) => {
+                problems.push(problem);
+                break;
+            }
+        }
+    }
+    if problems.is_empty() { Ok((years, timed)) } else { Err(problems.into()) }
+}
+
+fn label_kind(label: &Label) -> &'static str {
+    match label {
+        Label::Year(_) => "a calendar year",
+        Label::Number(_) => "a year number",
+        Label::Financial(..) => "a financial year",
+        Label::Date(_) => "a date",
+        Label::Offset(_) => "an offset",
+    }
+}
+
+fn base_kind(base: &Base) -> &'static str {
+    match base {
+        Base::Year(_) => "a calendar year",
+        Base::Financial(_) => "a financial year",
+        Base::Date(_) => "a date",
+        Base::Zero => "year number 0",
+    }
+}
+
+/// The base in words.
+pub fn base_words(base: &Base) -> String {
+    match base {
+        Base::Year(year) => year.to_string(),
+        Base::Financial(year) => format!("{year}/{:02}", (year + 1).rem_euclid(100)),
+        Base::Date(date) => date_words(*date),
+        Base::Zero => "year 0".to_owned(),
+    }
+}
+
+fn date_words(date: NaiveDate) -> String {
+    const MONTHS: [&str; 12] = [
+        "January",
+        "February",
+        "March",
+        "April",
+        "May",
+        "June",
+        "July",
+        "August",
+        "September",
+        "October",
+        "November",
+        "December",
+    ];
+    format!("{} {} {}", date.day(), MONTHS[date.month0() as usize], date.year())
+}
+
+/// A label in words.
+pub fn label_words(label: &Label) -> String {
+    match label {
+        Label::Year(year) => year.to_string(),
+        Label::Number(n) => format!("year {n}"),
+        Label::Financial(_, text) => text.trim().to_owned(),
+        Label::Date(date) => date_words(*date),
+        Label::Offset(t) => format!("offset {t}"),
+    }
+}
+
+/// The calendar year of a base.
+pub(crate) fn base_year(base: &Base) -> Option<i32> {
+    match base {
+        Base::Year(year) | Base::Financial(year) => Some(*year),
+        Base::Date(date) => Some(date.year()),
+        Base::Zero => None,
+    }
+}
+
+/// The times in force.
+pub(crate) struct Clock {
+    /// Default where the timing does not apply.
+    pub timing: Timing,
+    /// Dates and offsets say themselves where a flow stands; a timing applies to all else.
+    pub timed: bool,
+    /// Years after the base.
+    pub years: Vec<f64>,
+    /// Offsets of the flows (their years' ends where averaged).
+    pub offsets: Vec<f64>,
+}
+
+impl Clock {
+    pub fn new(axis: &Axis, base: &Base, timing: Timing) -> Result<Self> {
+        let (years, timed) = years_after_base(axis, base)?;
+        let timing = if timed { timing } else { Timing::default() };
+        let shift = shift_of(timing);
+        let offsets = years.iter().map(|y| y + shift).collect();
+        Ok(Clock { timing, timed, years, offsets })
+    }
+
+    /// The factor of the i-th year.
+    pub fn factor(&self, curve: &Curve, i: usize) -> hence_core::Result<f64> {
+        curve.timed_factor(self.years[i], self.timing)
+    }
+
+    /// The length of the appraisal: the largest offset, 0 where no flow stands after the base.
+    pub fn length(&self) -> f64 {
+        self.offsets.iter().copied().fold(0.0, f64::max)
+    }
+
+    /// The offset of a year that is `years` after the base.
+    pub fn offset(&self, years: f64) -> f64 {
+        years + shift_of(self.timing)
+    }
+
+    /// The moments at which one unit in the year that has offset `t` stands, with their shares: an averaged flow
+    /// stands half at each end of its year.
+    pub fn moments(&self, t: f64) -> Vec<(f64, f64)> {
+        match self.timing.flows {
+            Position::Averaged => vec![(t - 1.0, 0.5), (t, 0.5)],
+            _ => vec![(t, 1.0)],
+        }
+    }
+}
+
+/// Position of the flows less position of the base; an averaged flow counts at its year's end.
+pub(crate) fn shift_of(timing: Timing) -> f64 {
+    let position = |p: Position| match p {
+        Position::Start => 0.0,
+        Position::Middle => 0.5,
+        Position::End | Position::Averaged => 1.0,
+    };
+    position(timing.flows) - position(timing.base)
+}
+
+/// "a flow in 2026 has factor 1.0000, in 2027 0.9662".
+pub(crate) fn sentence(axis: &Axis, clock: &Clock, factors: &[f64]) -> String {
+    let mut text = format!("a flow in {} has factor {:.4}", label_words(&axis.labels[0]), factors[0]);
+    if let (Some(label), Some(factor)) = (axis.labels.get(1), factors.get(1)) {
+        text.push_str(&format!(", in {} {factor:.4}", label_words(label)));
+    }
+    if clock.timed { format!("{}: {text}", clock.timing) } else { text }
+}
