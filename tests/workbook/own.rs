@@ -16,8 +16,12 @@ fn filled(package: &Package) -> Filled {
 
 #[test]
 fn scratch() {
-    for (name, bytes) in [("options.xlsx", books::options().bytes()), ("case.xlsx", books::CASES[6].book().bytes()),
-      ("s.xlsx", std::fs::read("../../samples/mine-drainage.xlsx").unwrap()), ("s2.xlsx", std::fs::read("../../samples/mine-drainage-libreoffice.xlsx").unwrap())] {
+    for (name, bytes) in [
+        ("options.xlsx", books::options().bytes()),
+        ("case.xlsx", books::CASES[6].book().bytes()),
+        ("s.xlsx", std::fs::read("../../samples/mine-drainage.xlsx").unwrap()),
+        ("s2.xlsx", std::fs::read("../../samples/mine-drainage-libreoffice.xlsx").unwrap()),
+    ] {
         let input = package(name, bytes);
         let first = filled(&input).bytes;
         assert!(first == filled(&input).bytes, "same input");
@@ -32,14 +36,23 @@ fn scratch() {
             let p: Vec<&str> = x.parts().collect();
             let q: Vec<&str> = y.parts().collect();
             println!("{n} parts same list: {}", p == q);
-            if p != q { println!("{p:?}\n{q:?}"); }
+            if p != q {
+                println!("{p:?}\n{q:?}");
+            }
             for part in x.parts() {
                 if x.part(part).unwrap() != y.part(part).unwrap() {
                     println!("{n} differs {part}");
                     if name != "s.xlsx" || true {
-                        let (u, v) = (String::from_utf8(x.part(part).unwrap().unwrap()).unwrap(), String::from_utf8(y.part(part).unwrap().unwrap_or_default()).unwrap());
+                        let (u, v) = (
+                            String::from_utf8(x.part(part).unwrap().unwrap()).unwrap(),
+                            String::from_utf8(y.part(part).unwrap().unwrap_or_default()).unwrap(),
+                        );
                         let i = u.bytes().zip(v.bytes()).take_while(|(a, b)| a == b).count();
-                        println!("   {}\n   {}", u.get(i.saturating_sub(100)..(i + 200).min(u.len())).unwrap_or("?"), v.get(i.saturating_sub(100)..(i + 200).min(v.len())).unwrap_or("?"));
+                        println!(
+                            "   {}\n   {}",
+                            u.get(i.saturating_sub(100)..(i + 200).min(u.len())).unwrap_or("?"),
+                            v.get(i.saturating_sub(100)..(i + 200).min(v.len())).unwrap_or("?")
+                        );
                     }
                 }
             }
