@@ -199,8 +199,8 @@ pub const CODES: &[Code] = codes! {
     Flows {
         "baseline-damage": "A damage is named for an option or for the baseline only, and counts as 0 for the other.",
         "benefit-sign": "A benefit is negative in every year.",
-        "blank-zero": "A blank cell among the flows counts as 0.",
-        "block-empty": "A block holds no stream.",
+        "blank-zero": "Blank cells among the flows count as 0.",
+        "block-empty": "A block holds no numbers and counts for nothing.",
         "block-heading": "A row of a block has no numbers and is taken for a heading.",
         "block-label": "A row of a block has no label, or the label of another.",
         "block-shape": "A block is not one row or column of labels beside as many cells as the years.",
@@ -214,6 +214,7 @@ pub const CODES: &[Code] = codes! {
         "logical-value": "A cell holds TRUE or FALSE, where a number is allowed.",
         "merged": "Flows stand in merged cells, of which only the first holds one.",
         "misaligned": "A stream or target stands beside other cells than the years.",
+        "no-flows": "Every cell of every stream is blank: nothing has been entered yet.",
         "no-result": "A formula has no stored result.",
         "overlap": "Two streams share cells, whose flows would count twice.",
         "residual-sign": "A residual value is negative, though values left over are entered as positive numbers.",

@@ -12,7 +12,7 @@ use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
-use crate::package::{Package, same_file, write_atomically};
+use crate::package::{Package, may_write, same_file, write_atomically};
 use crate::patch::{CellWrite, patch_sheet};
 use crate::plan::{Plan, plan_targets};
 use crate::preflight::preflight;
@@ -81,17 +81,13 @@ pub fn fill_file(
     force: bool,
 ) -> Result<Report> {
     let package = Package::open(input)?;
-    let refuse = |code, message: String, hint: &str| {
-        Err(Problem::error(code, Place::default(), message).hint(hint).into())
-    };
     if same_file(input, output) {
         let message = format!("the output {} is the input, which is never written", output.display());
-        return refuse("output-is-input", message, "give --out another name");
+        return Err(Problem::error("output-is-input", Place::default(), message)
+            .hint("give --out another name")
+            .into());
     }
-    if output.exists() && !force {
-        let message = format!("the output {} exists already", output.display());
-        return refuse("output-exists", message, "--force to replace it, or --out with another name");
-    }
+    may_write(output, force)?;
     let filled = fill(&package, request, catalogue)?;
     write_atomically(output, &filled.bytes, force)?;
     Ok(filled.report)
