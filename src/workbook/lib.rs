@@ -8,6 +8,7 @@ pub mod check;
 mod clock;
 pub mod codes;
 pub mod fill;
+mod follow;
 pub mod formulas;
 pub mod graft;
 pub mod layout;

@@ -29,11 +29,29 @@ pub struct Plan {
     pub problems: Vec<Problem>,
     /// How many target cells were written.
     pub filled: usize,
-    /// How many formulas were left and agree.
+    /// How many formulas were left and agree, once they are compared.
     pub ticked: usize,
+    /// Formulas that were left and whose result is not known, once they are compared.
+    pub unknown: Vec<SheetRange>,
+    kept: Vec<(TargetCell, Held, Cached)>,
 }
 
 impl Plan {
+    /// Compares the cells that are left as they are. Those that follow filled cells hold a result of before, which says
+    /// nothing of what they come to.
+    pub fn compare(&mut self, appraisal: &Appraisal, follows: impl Fn(&SheetRange) -> bool) {
+        let mut by_target: BTreeMap<(usize, usize), Kept> = BTreeMap::new();
+        for (cell, held, expected) in &self.kept {
+            let kept = by_target.entry((cell.choice, cell.target)).or_default();
+            kept.compare(held, expected, cell, follows(&cell.at));
+        }
+        for ((choice, target), kept) in by_target {
+            self.ticked += kept.ticked;
+            self.unknown.extend(kept.waiting.iter().chain(&kept.following).cloned());
+            self.problems.extend(kept.problems(&appraisal.choices[choice].targets[target]));
+        }
+    }
+
     /// Writes a cell, and keeps what it held before.
     pub fn write(&mut self, at: SheetRange, role: String, before: String, write: CellWrite) {
         let after = match &write {
@@ -63,7 +81,6 @@ pub fn plan_targets(
         for (t, target) in choice.targets.iter().enumerate() {
             let results = expected(appraisal, outcomes, layout, c, target);
             let writes = target_writes(appraisal, outcomes, layout, c, target, formulas);
-            let mut kept = Kept::default();
             for (i, (write, result)) in writes.into_iter().zip(&results).enumerate() {
                 let held = target.held.get(i).unwrap_or(&Held::Blank);
                 let replaceable = match held {
@@ -89,12 +106,14 @@ pub fn plan_targets(
                     plan.filled += 1;
                     plan.write(cell.at.clone(), role_words(&target.role), words(held), write);
                     plan.cells.push(cell);
-                } else if kept.compare(held, result, &cell) {
-                    plan.ticked += kept.take_tick();
-                    plan.cells.push(cell);
+                } else {
+                    plan.kept.push((cell.clone(), held.clone(), result.clone()));
+                    // Text is reported and has no place among the checks.
+                    if matches!(held, Held::Formula { .. }) {
+                        plan.cells.push(cell);
+                    }
                 }
             }
-            plan.problems.extend(kept.problems(target));
         }
     }
     plan
@@ -129,23 +148,23 @@ pub fn words(held: &Held) -> String {
 struct Kept {
     texts: Vec<SheetRange>,
     waiting: Vec<SheetRange>,
+    following: Vec<SheetRange>,
     differing: Vec<(SheetRange, String, Cached, Option<f64>)>,
-    fresh_tick: bool,
+    ticked: usize,
 }
 
 impl Kept {
-    /// Compares one cell; true where it enters the audit's checks.
-    fn compare(&mut self, held: &Held, expected: &Cached, cell: &TargetCell) -> bool {
+    /// Compares one cell.
+    fn compare(&mut self, held: &Held, expected: &Cached, cell: &TargetCell, follows: bool) {
         let Held::Formula { value, shown, .. } = held else {
             self.texts.push(cell.at.clone());
-            return false;
+            return;
         };
         match (value, shown, expected) {
+            _ if follows => self.following.push(cell.at.clone()),
             (None, None, _) => self.waiting.push(cell.at.clone()),
-            (Some(found), _, Cached::Number(x)) if (found - x).abs() <= cell.tolerance => {
-                self.fresh_tick = true;
-            }
-            (None, Some(shown), Cached::Text(text)) if same_text(shown, text) => self.fresh_tick = true,
+            (Some(found), _, Cached::Number(x)) if (found - x).abs() <= cell.tolerance => self.ticked += 1,
+            (None, Some(shown), Cached::Text(text)) if same_text(shown, text) => self.ticked += 1,
             (value, shown, expected) => {
                 let found = value.map(|x| x.to_string()).or(shown.clone()).unwrap_or_default();
                 let difference = match expected {
@@ -155,11 +174,6 @@ impl Kept {
                 self.differing.push((cell.at.clone(), found, expected.clone(), difference));
             }
         }
-        true
-    }
-
-    fn take_tick(&mut self) -> usize {
-        usize::from(std::mem::take(&mut self.fresh_tick))
     }
 
     /// One problem a cause, over the cells it concerns.
@@ -182,6 +196,17 @@ impl Kept {
             problems.push(
                 Problem::warning("awaits-recalculation", place.called(&target.from), message)
                     .hint("open and save the workbook in a spreadsheet program first"),
+            );
+        }
+        if let Some(place) = span(&self.following) {
+            let message = format!(
+                "{} of {total} formulas depend on cells that are filled, so they are compared when the output is \
+                 computed",
+                self.following.len()
+            );
+            problems.push(
+                Problem::warning("awaits-recalculation", place.called(&target.from), message)
+                    .hint("open the output in a spreadsheet program and look at the verdict"),
             );
         }
         let cells: Vec<SheetRange> = self.differing.iter().map(|(at, ..)| at.clone()).collect();
