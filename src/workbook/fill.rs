@@ -6,13 +6,13 @@ use std::path::Path;
 use hence_core::{Basis, Catalogue, Compounding, Spec};
 use sha2::{Digest, Sha256};
 
-use crate::appraisal::{Appraisal, Given};
+use crate::appraisal::{Appraisal, Given, Setting, Stated};
 use crate::graft::{Graft, graft};
 use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
-use crate::package::{Package, same_file, write_atomically};
+use crate::package::{Package, may_write, same_file, write_atomically};
 use crate::patch::{CellWrite, patch_sheet};
 use crate::plan::{Plan, plan_targets};
 use crate::preflight::preflight;
@@ -22,7 +22,7 @@ use crate::references::SheetRange;
 use crate::report::{Companion, Report, option_reports};
 use crate::resolve::{Options, resolve};
 use crate::sheets::{AuditInput, Meta, SheetNames, build};
-use crate::stale;
+use crate::stale::{self, Dependents};
 use crate::valuation::{from_core, value};
 use crate::verify::{Expected, verify};
 
@@ -81,17 +81,13 @@ pub fn fill_file(
     force: bool,
 ) -> Result<Report> {
     let package = Package::open(input)?;
-    let refuse = |code, message: String, hint: &str| {
-        Err(Problem::error(code, Place::default(), message).hint(hint).into())
-    };
     if same_file(input, output) {
         let message = format!("the output {} is the input, which is never written", output.display());
-        return refuse("output-is-input", message, "give --out another name");
+        return Err(Problem::error("output-is-input", Place::default(), message)
+            .hint("give --out another name")
+            .into());
     }
-    if output.exists() && !force {
-        let message = format!("the output {} exists already", output.display());
-        return refuse("output-exists", message, "--force to replace it, or --out with another name");
-    }
+    may_write(output, force)?;
     let filled = fill(&package, request, catalogue)?;
     write_atomically(output, &filled.bytes, force)?;
     Ok(filled.report)
@@ -134,8 +130,10 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     problems.append(&mut plan.problems);
     let carried = own::carried(package, &book, &previous, &names)?;
 
+    state(&mut appraisal, &plan, package, &book)?;
     let written: Vec<SheetRange> = plan.changed.clone();
     let dependents = stale::dependents(package, &book, &written)?;
+    follow(&mut appraisal, &book, &written, &dependents, &mut problems);
     problems.extend(dependents.warnings);
     for (sheet, cells) in dependents.cells {
         let name = &book.sheets[sheet].name;
@@ -293,6 +291,67 @@ fn plan_basis(
         overwrite(plan, &choice.basis, &held, "basis", write)?;
     }
     Ok(())
+}
+
+/// The settings as the output will hold them: a basis (or a timing) that this fill writes is what it states.
+fn state(appraisal: &mut Appraisal, plan: &Plan, package: &Package, book: &Workbook) -> Result<()> {
+    // The workbook's own basis is not read where the command line gives one.
+    for choice in &appraisal.choices {
+        let Some(at) = &choice.basis.at else { continue };
+        if appraisal.settings.iter().any(|setting| setting.at == *at) {
+            continue;
+        }
+        let value = match cell_held(package, book, at)?.value {
+            Value::Number(x) => Stated::Number(x),
+            Value::Text(text) => Stated::Text(text),
+            _ => Stated::Text(String::new()),
+        };
+        let from = choice.basis.from.clone();
+        appraisal.settings.push(Setting { at: at.clone(), from, value });
+    }
+    for setting in &mut appraisal.settings {
+        let writes = plan.writes.get(&setting.at.sheet);
+        match writes.and_then(|writes| writes.get(&setting.at.range.first)) {
+            Some(CellWrite::Number(x)) => setting.value = Stated::Number(*x),
+            Some(CellWrite::Text(text)) => setting.value = Stated::Text(text.clone()),
+            _ => {}
+        }
+    }
+    Ok(())
+}
+
+/// Marks the rows of the coverage whose numbers follow filled cells, and warns of flows that do: they were valued as they
+/// stood before.
+fn follow(
+    appraisal: &mut Appraisal,
+    book: &Workbook,
+    written: &[SheetRange],
+    dependents: &Dependents,
+    problems: &mut Vec<Problem>,
+) {
+    let depends = |at: &SheetRange| {
+        let sheet = book.sheet_index(&at.sheet);
+        let cells = sheet.and_then(|index| dependents.cells.get(&index));
+        cells.is_some_and(|cells| {
+            cells.range(at.range.first..=at.range.last).any(|&cell| at.range.contains(cell))
+        })
+    };
+    for row in &mut appraisal.coverage {
+        let filled =
+            |cell: &SheetRange| cell.sheet == row.at.sheet && row.at.range.contains(cell.range.first);
+        row.follows = written.iter().any(filled) || depends(&row.at);
+    }
+    let mut seen = BTreeSet::new();
+    for stream in appraisal.choices.iter().flat_map(|choice| &choice.streams) {
+        if depends(&stream.at) && seen.insert(stream.at.clone()) {
+            let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+            let message =
+                "its formulas depend, or may depend, on cells that are filled: it was valued as it stood";
+            problems.push(Problem::warning("flow-follows", place, message).hint(
+                "open the output, let it recalculate, look at the verdict, and fill it again if it differs",
+            ));
+        }
+    }
 }
 
 /// Writes into a cell that was read, unless it holds a formula.

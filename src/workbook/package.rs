@@ -15,7 +15,7 @@ mod sniff;
 
 pub use container::{MAX_ENTRIES, MAX_FILE, MAX_PART, MAX_RATIO, MAX_TOTAL, RATIO_FROM};
 pub use edit::{NewRelationship, edit_content_types, edit_relationships};
-pub use output::{Changes, same_file, write_atomically};
+pub use output::{Changes, may_write, same_file, write_atomically};
 pub use parts::{Relationship, relationships_part, resolve_target};
 
 pub(crate) use container::Inflated;

@@ -11,7 +11,7 @@ use std::path::Path;
 use std::sync::OnceLock;
 
 use hence_core::Catalogue;
-use hence_workbook::check;
+use hence_workbook::check::check;
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::package::Package;
 use hence_workbook::patch::{Cached, CellWrite};
@@ -19,7 +19,7 @@ use hence_workbook::references::Cell;
 use hence_workbook::sheets::VERDICT_AGREES;
 
 use books::{CASES, Labels, catalogue};
-use cells::{Cells, FileCell, Stored, cells, changed, verdict};
+use cells::{Cells, FileCell, Stored, cells, changed, package, verdict};
 use office::{Recalculate, saved, soffice};
 
 /// The samples: as it was made, and as LibreOffice saved it.
@@ -117,11 +117,8 @@ fn output(name: &str) -> &'static [u8] {
 }
 
 /// What `hence check` says: differences, or the problems that keep it from valuing; nothing where all agrees.
-fn check(bytes: &[u8]) -> Vec<String> {
-    let folder = tempfile::tempdir().expect("a temporary folder");
-    let path = folder.path().join("book.xlsx");
-    std::fs::write(&path, bytes).expect("a temporary file");
-    match Package::open(&path).and_then(|package| check::check(&package, &[], &catalogue())) {
+fn found(bytes: &[u8]) -> Vec<String> {
+    match check(&package(bytes), &[], &catalogue()) {
         Ok(report) if report.agrees() => Vec::new(),
         Ok(report) => report.differences.iter().map(|d| format!("{} {}", d.place, d.role)).collect(),
         Err(error) => error.problems().iter().map(ToString::to_string).collect(),
@@ -154,7 +151,7 @@ fn every_result_is_recalculated_to_the_same() {
         if verdict(after) != VERDICT_AGREES {
             wrong.push(format!("{name}: recalculated, the verdict is {:?}", verdict(after)));
         }
-        wrong.extend(check(after).into_iter().map(|found| format!("{name}: check finds {found}")));
+        wrong.extend(found(after).into_iter().map(|found| format!("{name}: check finds {found}")));
     }
     println!("{} workbooks, {compared} results of formulas recalculated", books.len() - 1);
     assert!(wrong.is_empty(), "{}", wrong.join("\n"));
@@ -288,7 +285,7 @@ fn the_verdict_turns_when_a_cell_is_changed() {
         if !verdict(after).starts_with("differs: ") {
             wrong.push(format!("{what}: the verdict is still {:?}", verdict(after)));
         }
-        let found = check(if turn.check == Check::Before { before } else { after });
+        let found = found(if turn.check == Check::Before { before } else { after });
         if found.is_empty() != (turn.check == Check::Never) {
             wrong.push(format!("{what}: check finds {found:?}"));
         }

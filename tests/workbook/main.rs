@@ -3,6 +3,7 @@
 mod bare;
 mod codes;
 mod corpus;
+mod files;
 mod fill;
 mod formulas;
 mod graft;

@@ -85,8 +85,9 @@ fn years_may_run_down_a_column() {
     assert_eq!(read.axes[0].direction, Direction::Down);
     assert_eq!(read.choices[0].streams[0].raw, [1.0, 2.0, 3.0]);
     assert_eq!(read.choices[0].basis.value, "0.035");
-    assert_eq!(read.coverage.len(), 1);
-    assert_eq!((read.coverage[0].heading.as_str(), read.coverage[0].total), ("Works", 6.0));
+    // The factors are still blank.
+    let rows: Vec<_> = read.coverage.iter().map(|row| (row.heading.as_str(), row.total)).collect();
+    assert_eq!(rows, [("Works", 6.0), ("", 0.0)]);
 }
 
 #[test]
@@ -444,6 +445,8 @@ fn coverage_lists_every_numeric_row_with_its_role_or_none() {
         [
             ("Works", "cost: works".to_owned(), 175.0, "B5:D5".to_owned()),
             ("Access", "benefit: access".to_owned(), 170.0, "B6:D6".to_owned()),
+            // Still blank: a fill writes numbers here.
+            ("Factor", "factor".to_owned(), 0.0, "B7:D7".to_owned()),
             ("Fees", String::new(), 5.0, "B10:D10".to_owned()),
             ("Noise", String::new(), 8.0, "B12:D12".to_owned()),
         ]

@@ -161,6 +161,7 @@ pub fn appraisal(case: &Case) -> Appraisal {
         .iter()
         .flat_map(|c| &c.streams)
         .map(|s| Covered {
+            follows: false,
             at: s.at.clone(),
             heading: s.name.clone(),
             roles: vec![s.name.clone()],

@@ -429,7 +429,8 @@ fn notes_of_a_person_are_put_back_outside_of_what_is_marked_as_own() {
     let note = |row, col, text: &str| Carried {
         sheet: "Audit summary".into(),
         cell: Cell { row, col },
-        text: text.into(),
+        content: Content::Text(text.into()),
+        style: Style::Text,
     };
     let audit = audit_of(a, o, &[note(500, 0, "seen, JB"), note(4, 3, "in the way")]);
     let summary = &audit.composed.sheets[1];
