@@ -238,7 +238,7 @@ pub const CODES: &[Code] = codes! {
         "validation": "A target has a validation rule, which the results may not meet.",
     }
     Fill {
-        "awaits-recalculation": "Formulas in a target have no stored result, so they are not compared.",
+        "awaits-recalculation": "Formulas in a target have no stored result, or one that the fill makes stale, so they are not compared.",
         "cannot-graft": "Part of hence's own sheets cannot be added: a fault of hence, please report it.",
         "chart-count": "The charts made are not those described: a fault of hence, please report it.",
         "companion": "The schedule that is to be shown beside the declared one could not be valued.",
@@ -257,6 +257,7 @@ pub const CODES: &[Code] = codes! {
         "protected-workbook": "The workbook's structure is protected; sheets are added all the same.",
         "shared-workbook": "The workbook is shared and keeps a history, in which the fill does not appear.",
         "sheet-name-taken": "The workbook has a sheet of its own under the name of one of hence's.",
+        "stale-input": "Formulas that were read depend on cells that the fill changes.",
         "text-characters": "A text to be written holds a character that workbooks do not allow.",
         "text-length": "A text or formula to be written is longer than a cell allows.",
         "unequal-lives": "Annual equivalents over unequal lives do not compare under a declining curve.",

@@ -6,7 +6,7 @@ use std::path::Path;
 use hence_core::{Basis, Catalogue, Compounding, Spec};
 use sha2::{Digest, Sha256};
 
-use crate::appraisal::{Appraisal, Given};
+use crate::appraisal::{Appraisal, Given, Setting, Stated};
 use crate::graft::{Graft, graft};
 use crate::layout::Layout;
 use crate::model::Workbook;
@@ -14,14 +14,14 @@ use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
 use crate::package::{Package, same_file, write_atomically};
 use crate::patch::{CellWrite, patch_sheet};
-use crate::plan::{Plan, plan_targets};
+use crate::plan::{Plan, Ways, plan_targets};
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::SheetRange;
 use crate::report::{Companion, Report, option_reports};
-use crate::resolve::{Options, resolve};
-use crate::sheets::{AuditInput, Meta, SheetNames, build};
+use crate::resolve::{Options, inputs, resolve};
+use crate::sheets::{AuditInput, Meta, SheetNames, Touched, build};
 use crate::stale;
 use crate::valuation::{from_core, value};
 use crate::verify::{Expected, verify};
@@ -126,26 +126,49 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     let names = SheetNames::choose(&foreign_sheets(&book, &previous));
     let layout = Layout::new(&appraisal, &outcomes, &names);
 
-    let mut plan =
-        plan_targets(&appraisal, &outcomes, &layout, &previous, request.formulas, request.replace_formulas);
-    if let Some(basis) = stated {
-        plan_basis(&mut plan, package, &book, &appraisal, &outcomes, basis)?;
-    }
-    problems.append(&mut plan.problems);
+    let written = own::written(package, &book, &previous, &names)?;
+    let plan_with = |stale: &Touched| -> Result<(Plan, Vec<Setting>)> {
+        let ways = Ways {
+            previous: &previous,
+            written: &written,
+            formulas: request.formulas,
+            replace_formulas: request.replace_formulas,
+            stale,
+        };
+        let mut plan = plan_targets(&appraisal, &outcomes, &layout, &ways);
+        let settings = match stated {
+            Some(basis) => plan_basis(&mut plan, package, &book, &appraisal, &outcomes, basis)?,
+            None => Vec::new(),
+        };
+        Ok((plan, settings))
+    };
+    let (mut plan, mut settings) = plan_with(&Touched::new())?;
     let carried = own::carried(package, &book, &previous, &names)?;
 
-    let written: Vec<SheetRange> = plan.changed.clone();
-    let dependents = stale::dependents(package, &book, &written)?;
+    let dependents = stale::dependents(package, &book, &plan.changed)?;
     problems.extend(dependents.warnings);
-    for (sheet, cells) in dependents.cells {
-        let name = &book.sheets[sheet].name;
-        if previous.iter().any(|own| own.index == sheet) {
-            continue;
-        }
+    let foreign =
+        dependents.cells.into_iter().filter(|(sheet, _)| !previous.iter().any(|own| own.index == *sheet));
+    let stale: Touched = foreign.map(|(sheet, cells)| (book.sheets[sheet].name.clone(), cells)).collect();
+    if plan.cells.iter().any(|cell| !cell.filled && holds(&stale, &cell.at)) {
+        // Formulas left in targets that depend on what is written: what they show is from before.
+        (plan, settings) = plan_with(&stale)?;
+    }
+    problems.append(&mut plan.problems);
+    problems.extend(stale_inputs(&appraisal, &stale));
+    let mut touched = stale.clone();
+    for at in &plan.changed {
+        touched.entry(at.sheet.clone()).or_default().insert(at.range.first);
+    }
+    for (name, cells) in &stale {
         let writes = plan.writes.entry(name.clone()).or_default();
         for cell in cells {
-            writes.entry(cell).or_insert(CellWrite::DropValue);
+            writes.entry(*cell).or_insert(CellWrite::DropValue);
         }
+    }
+    for setting in settings {
+        appraisal.settings.retain(|old| old.at != setting.at);
+        appraisal.settings.push(setting);
     }
 
     let meta = meta(package, &outcomes, request);
@@ -159,6 +182,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         problems: &problems,
         carried: &carried,
         differs: &differs(),
+        touched: &touched,
     };
     let built = build(&input, &layout)?;
     let mut patched: BTreeMap<String, Vec<u8>> = BTreeMap::new();
@@ -232,6 +256,7 @@ fn require_basis(
 }
 
 /// The new basis goes into every cell that states the old one, and a timing that it states into the timing's cell.
+/// What those cells state then is returned.
 fn plan_basis(
     plan: &mut Plan,
     package: &Package,
@@ -239,7 +264,8 @@ fn plan_basis(
     appraisal: &Appraisal,
     outcomes: &[ChoiceOutcome],
     basis: &str,
-) -> Result<()> {
+) -> Result<Vec<Setting>> {
+    let mut settings = Vec::new();
     let mut seen = BTreeSet::new();
     for (choice, outcome) in appraisal.choices.iter().zip(outcomes) {
         let Some(at) = &choice.basis.at else {
@@ -260,13 +286,18 @@ fn plan_basis(
         {
             let held = cell_held(package, book, cell)?;
             let write = CellWrite::Text(outcome.timing.to_string());
-            overwrite(plan, timing, &held, "timing", write)?;
+            settings.push(overwrite(plan, cell, timing, &held, "timing", write)?);
         }
         if !seen.insert(at.clone()) {
             continue;
         }
         let held = cell_held(package, book, at)?;
         if shown(&held) == basis {
+            settings.push(Setting {
+                at: at.clone(),
+                from: choice.basis.from.clone(),
+                value: stated_by(&held),
+            });
             continue;
         }
         // Where the cell held a number, formulas may count with it: a flat yearly rate stays a number.
@@ -275,6 +306,8 @@ fn plan_basis(
                 if outcome.basis.stated() == (None, None) && outcome.basis.schedule().is_none() =>
             {
                 if old == rate {
+                    let from = choice.basis.from.clone();
+                    settings.push(Setting { at: at.clone(), from, value: Stated::Number(*old) });
                     continue;
                 }
                 CellWrite::Number(*rate)
@@ -289,28 +322,63 @@ fn plan_basis(
             }
             _ => CellWrite::Text(basis.to_owned()),
         };
-        overwrite(plan, &choice.basis, &held, "basis", write)?;
+        settings.push(overwrite(plan, at, &choice.basis, &held, "basis", write)?);
     }
-    Ok(())
+    Ok(settings)
 }
 
-/// Writes into a cell that was read, unless it holds a formula.
+/// Writes into a cell that was read, unless it holds a formula; what the cell states then.
 fn overwrite<T>(
     plan: &mut Plan,
+    at: &SheetRange,
     given: &Given<T>,
     held: &ReadCell,
     what: &str,
     write: CellWrite,
-) -> Result<()> {
-    let Some(at) = &given.at else { return Ok(()) };
+) -> Result<Setting> {
     if held.formula.is_some() {
         let message = format!("the {what} cell holds a formula, which would be lost");
         return Err(Problem::error("basis-formula", given_place(given), message)
             .hint(format!("give the name hence_{what} to the cell that the formula takes it from"))
             .into());
     }
+    let value = match &write {
+        CellWrite::Number(x) => Stated::Number(*x),
+        CellWrite::Text(text) => Stated::Text(text.clone()),
+        _ => stated_by(held),
+    };
     plan.write(at.clone(), what.to_owned(), shown(held), write);
-    Ok(())
+    Ok(Setting { at: at.clone(), from: given.from.clone(), value })
+}
+
+fn stated_by(held: &ReadCell) -> Stated {
+    match held.value {
+        Value::Number(x) => Stated::Number(x),
+        _ => Stated::Text(shown(held)),
+    }
+}
+
+fn holds(cells: &Touched, at: &SheetRange) -> bool {
+    cells.get(&at.sheet).is_some_and(|cells| cells.contains(&at.range.first))
+}
+
+/// Inputs that depend on cells this fill changes: what was read of them is from before.
+fn stale_inputs(appraisal: &Appraisal, stale: &Touched) -> Vec<Problem> {
+    let mut found = Vec::new();
+    for (at, from) in inputs(&appraisal.choices, &appraisal.axes) {
+        let Some(cells) = stale.get(&at.sheet) else { continue };
+        let Some(cell) = at.range.cells().find(|cell| cells.contains(cell)) else { continue };
+        let message = format!(
+            "its formulas depend on cells that this fill changes (first {cell}), so what was read may be stale"
+        );
+        let problem =
+            Problem::warning("stale-input", Place::cells(&at.sheet, at.range).called(&from), message)
+                .hint("open and save the output in a spreadsheet program, and fill it again");
+        if !found.contains(&problem) {
+            found.push(problem);
+        }
+    }
+    found
 }
 
 fn cell_held(package: &Package, book: &Workbook, at: &SheetRange) -> Result<ReadCell> {

@@ -52,6 +52,7 @@ fn values_and_formulas_give_the_same_report() {
 #[test]
 fn a_fill_can_be_repeated() {
     let package = sample("mine-drainage.xlsx");
-    let request = FillRequest { basis: Some("4%".into()), by: Some("A. Reader".into()), ..FillRequest::default() };
+    let request =
+        FillRequest { basis: Some("4%".into()), by: Some("A. Reader".into()), ..FillRequest::default() };
     assert!(filled(&package, &request).bytes == filled(&package, &request).bytes);
 }

@@ -113,6 +113,7 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
                     expected,
                     filled: matches!(target.held[index], Held::Blank),
                     tolerance: expected.map_or(0.0, |x| 1e-9 * x.abs().max(1.0)),
+                    awaits: false,
                 });
             }
         }
@@ -143,6 +144,7 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
         problems: &appraisal.problems,
         carried,
         differs: &differs,
+        touched: &Touched::new(),
     };
     let composed = compose(&input, &layout);
     Audit { appraisal, outcomes, layout, composed }

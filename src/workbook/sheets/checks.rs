@@ -27,6 +27,8 @@ pub(super) struct Checks {
     pub settings: usize,
     /// Place of each check that differs, in order.
     pub differing: Vec<String>,
+    /// Number of checks of formulas that have no result yet.
+    pub awaiting: usize,
     /// Number of checks that have a second route.
     pub independent: usize,
 }
@@ -97,6 +99,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
         count: lines.len(),
         settings: make.settings.len(),
         differing: lines.iter().filter(|(_, l)| !l.agrees()).map(|(_, l)| l.place.clone()).collect(),
+        awaiting: lines.iter().filter(|(_, l)| l.awaits).count(),
         independent: lines.iter().filter(|(_, l)| l.rebuilt.is_some()).count(),
     }
 }
@@ -235,8 +238,13 @@ impl<'a> Maker<'a> {
         line.recorded = Live::number(recorded, outcome.factors[i]);
         if let Some(t) = target {
             let same = |other: &&TargetCell| other.at.sheet == at.sheet && other.at.range.first == cell;
-            let filled = self.input.cells.iter().find(same).is_none_or(|other| other.filled);
-            let value = if filled { Cached::Number(outcome.factors[i]) } else { held(&t.held[i]) };
+            let found = self.input.cells.iter().find(same);
+            line.awaits = found.is_some_and(|other| other.awaits);
+            let value = match found {
+                Some(other) if other.awaits => Cached::None,
+                Some(other) if !other.filled => held(&t.held[i]),
+                _ => Cached::Number(outcome.factors[i]),
+            };
             line.now = Some(Live { formula: refer_cell(self.home, &at.sheet, cell), value });
         }
         line

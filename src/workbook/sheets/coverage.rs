@@ -36,8 +36,13 @@ pub(super) fn sheet(input: &AuditInput<'_>) -> Coverage {
     for (i, heading) in headings.iter().enumerate() {
         sheet.text(HEADING, i as u32, Style::Heading, heading);
     }
+    // Totals of cells that this fill writes or makes stale are not those that were read.
+    let touched = |at: &SheetRange| {
+        let cells = input.touched.get(&at.sheet);
+        cells.is_some_and(|cells| at.range.cells().any(|cell| cells.contains(&cell)))
+    };
     let (valued, other): (Vec<_>, Vec<_>) =
-        input.appraisal.coverage.iter().partition(|c| !c.roles.is_empty());
+        input.appraisal.coverage.iter().partition(|c| !c.roles.is_empty() && !touched(&c.at));
     let first = HEADING + 1;
     for (i, row) in valued.iter().chain(&other).enumerate() {
         let at = first + i as u32;
@@ -45,6 +50,10 @@ pub(super) fn sheet(input: &AuditInput<'_>) -> Coverage {
         sheet.text(at, 1, Style::Wrapped, &row.heading);
         let role = if row.roles.is_empty() { "not valued".to_owned() } else { row.roles.join("; ") };
         sheet.text(at, 2, Style::Wrapped, role);
+        if touched(&row.at) {
+            sheet.text(at, 3, Style::Text, "changed by this fill");
+            continue;
+        }
         sheet.number(at, 3, Style::Money, row.total);
         let sum = format!("SUM({})", refer(&sheet.name, &row.at));
         sheet.formula(at, 4, Style::Money, sum, Cached::Number(row.total));

@@ -1,6 +1,6 @@
 //! hence's own sheets: Discounting, which the filled formulas refer to, and the audit sheets.
 
-mod changes;
+pub(crate) mod changes;
 mod charts;
 mod checks;
 mod coverage;
@@ -13,6 +13,8 @@ mod second_route;
 mod settings;
 mod summary;
 mod targets;
+
+use std::collections::{BTreeMap, BTreeSet};
 
 use hence_core::CAUTION;
 
@@ -95,6 +97,8 @@ pub struct TargetCell {
     pub filled: bool,
     /// Allowed absolute difference.
     pub tolerance: f64,
+    /// A formula whose result is not known until a spreadsheet program computes it.
+    pub awaits: bool,
 }
 
 /// What a person had typed on an audit sheet of an earlier fill, carried over.
@@ -129,7 +133,12 @@ pub struct AuditInput<'a> {
     pub carried: &'a [Carried],
     /// What differs in the package by design, a sentence each.
     pub differs: &'a [String],
+    /// Cells that this fill writes, and those whose stored results go because they depend on them.
+    pub touched: &'a Touched,
 }
+
+/// Cells by sheet.
+pub type Touched = BTreeMap<String, BTreeSet<Cell>>;
 
 /// hence's sheets, made.
 #[derive(Clone, Debug)]
