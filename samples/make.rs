@@ -1,10 +1,12 @@
 //! Makes the sample appraisal workbook: a closed mine whose drainage must be treated for centuries.
 //!
-//! `cargo run --example make-samples -- samples/mine-drainage.xlsx`. The place and every figure are invented.
+//! `cargo run -p hence-workbook --example make-samples -- samples/mine-drainage.xlsx`. The place and every figure are
+//! invented. `mine-drainage-libreoffice.xlsx` is the same workbook, opened and saved by LibreOffice Calc 7.4.
 
 use std::collections::BTreeMap;
 
 use xlsxwriter::prelude::*;
+use xlsxwriter::worksheet::PaperType;
 use xlsxwriter::worksheet::conditional_format::ConditionalFormat;
 use xlsxwriter::worksheet::validation::{DataValidation, DataValidationType, ErrorAlertOptions};
 
@@ -102,7 +104,10 @@ const UPLIFT: f64 = 0.2;
 struct Styles {
     title: Format,
     heading: Format,
+    number_heading: Format,
+    unit_heading: Format,
     text: Format,
+    unit: Format,
     input: Format,
     input_text: Format,
     percent: Format,
@@ -112,6 +117,7 @@ struct Styles {
     factor: Format,
     result: Format,
     ratio: Format,
+    rate: Format,
 }
 
 impl Styles {
@@ -129,8 +135,17 @@ impl Styles {
             heading: make(&|f| {
                 f.set_bold().set_border_bottom(FormatBorder::Thin);
             }),
+            number_heading: make(&|f| {
+                f.set_bold().set_border_bottom(FormatBorder::Thin).set_align(FormatAlignment::Right);
+            }),
+            unit_heading: make(&|f| {
+                f.set_bold().set_border_bottom(FormatBorder::Thin).set_indent(1);
+            }),
             text: make(&|f| {
-                f.set_text_wrap().set_vertical_align(FormatVerticalAlignment::VerticalTop);
+                f.set_text_wrap().set_vertical_align(FormatVerticalAlignment::VerticalTop).set_indent(1);
+            }),
+            unit: make(&|f| {
+                f.set_indent(1);
             }),
             input: make(&|f| {
                 f.set_num_format("#,##0").set_bg_color(shade);
@@ -159,6 +174,9 @@ impl Styles {
             ratio: make(&|f| {
                 f.set_bold().set_num_format("0.00");
             }),
+            rate: make(&|f| {
+                f.set_bold().set_num_format("0.0%");
+            }),
         }
     }
 }
@@ -179,8 +197,12 @@ fn along(sheet: &str, row: u32) -> String {
 }
 
 fn main() -> Outcome<()> {
-    let path = std::env::args().nth(1).unwrap_or_else(|| "samples/mine-drainage.xlsx".to_owned());
-    let book = Workbook::new(&path)?;
+    write(&std::env::args().nth(1).unwrap_or_else(|| "samples/mine-drainage.xlsx".to_owned()))
+}
+
+/// Writes the workbook; but for the time in `docProps/core.xml`, always the same.
+pub fn write(path: &str) -> Outcome<()> {
+    let book = Workbook::new(path)?;
     let styles = Styles::new();
     summary(&book, &styles)?;
     inputs(&book, &styles)?;
@@ -195,13 +217,16 @@ fn summary(book: &Workbook, styles: &Styles) -> Outcome<()> {
     sheet.set_column(0, 0, 22.0, None)?;
     sheet.set_column(1, 4, 20.0, None)?;
     sheet.set_landscape();
+    sheet.set_paper(PaperType::A4);
     sheet.fit_to_pages(1, 0);
+    sheet.set_footer("&L&A&RPage &P of &N")?;
     sheet.write_string(0, 0, "Hollin Rigg mine: treating the drainage", Some(&styles.title))?;
     sheet.write_string(1, 0, "Invented figures, in crowns at 2026 prices.", None)?;
     for (c, head) in
         ["Option", "PV of benefits", "PV of costs", "NPV over do nothing", "Rank"].iter().enumerate()
     {
-        sheet.write_string(3, c as u16, head, Some(&styles.heading))?;
+        let style = if c == 0 { &styles.heading } else { &styles.number_heading };
+        sheet.write_string(3, c as u16, head, Some(style))?;
     }
     for (i, way) in WAYS.iter().enumerate() {
         let row = 4 + i as u32;
@@ -229,7 +254,9 @@ fn inputs(book: &Workbook, styles: &Styles) -> Outcome<()> {
     sheet.set_column(0, 0, 34.0, None)?;
     sheet.set_column(1, 1, 66.0, None)?;
     sheet.set_landscape();
+    sheet.set_paper(PaperType::A4);
     sheet.fit_to_pages(1, 0);
+    sheet.set_footer("&L&A&RPage &P of &N")?;
     sheet.set_column(2, 2, 60.0, None)?;
     sheet.write_string(0, 0, "Inputs", Some(&styles.title))?;
     sheet.write_string(2, 0, "Base year", None)?;
@@ -309,12 +336,16 @@ fn option(book: &Workbook, styles: &Styles, way: &Way) -> Outcome<()> {
     sheet.set_column(FIRST_COLUMN, LAST_COLUMN, 11.0, None)?;
     sheet.freeze_panes(row::YEARS + 1, FIRST_COLUMN);
     sheet.set_landscape();
-    sheet.fit_to_pages(0, 1);
+    // Two centuries on eight sheets of A3, 25 years each.
+    sheet.set_paper(PaperType::A3);
+    sheet.fit_to_pages(8, 1);
+    sheet.set_footer("&L&A&RPage &P of &N")?;
     sheet.repeat_columns(0, 2)?;
     sheet.write_string(0, 0, way.name, Some(&styles.title))?;
     sheet.write_string(1, 0, way.about, None)?;
     for (c, head) in ["Crowns at 2026 prices", "Total", "Unit"].iter().enumerate() {
-        sheet.write_string(row::YEARS, c as u16, head, Some(&styles.heading))?;
+        let style = [&styles.heading, &styles.number_heading, &styles.unit_heading][c];
+        sheet.write_string(row::YEARS, c as u16, head, Some(style))?;
     }
     let labels = [
         (row::WORKS, "Works"),
@@ -337,7 +368,7 @@ fn option(book: &Workbook, styles: &Styles, way: &Way) -> Outcome<()> {
         let (first, last) = (column(FIRST_COLUMN), column(LAST_COLUMN));
         let total = format!("=SUM({first}{r1}:{last}{r1})", r1 = r + 1);
         sheet.write_formula_num(*r, 1, &total, Some(style), values.iter().sum())?;
-        sheet.write_string(*r, 2, "crowns", None)?;
+        sheet.write_string(*r, 2, "crowns", Some(&styles.unit))?;
     }
     for n in 0..YEARS {
         year(&mut sheet, styles, way, &flows, n)?;
@@ -357,7 +388,7 @@ fn option(book: &Workbook, styles: &Styles, way: &Way) -> Outcome<()> {
         sheet.write_string(r, 0, label, None)?;
         let style = match *role {
             "ratio" | "payback" => &styles.ratio,
-            "irr" => &styles.percent,
+            "irr" => &styles.rate,
             _ => &styles.result,
         };
         sheet.write_blank(r, 1, Some(style))?;

@@ -14,15 +14,15 @@ use clap::{Args, CommandFactory, Parser, Subcommand, ValueEnum};
     name = "hence",
     version,
     max_term_width = 100,
-    after_help = "`hence BOOK` alone does what `hence fill BOOK` does.\n\
+    after_help = "`hence BOOK` alone does what `hence fill BOOK` does.\n\n\
                   Exit status: 0 done; 1 ran, and something in a workbook is wrong; 2 could not run."
 )]
 pub struct Cli {
     /// When to use colour
     #[arg(long, global = true, value_name = "WHEN", default_value = "auto")]
     pub color: ColorWhen,
-    /// A folder of schedule files of your own, which come before the built-in ones
-    #[arg(long, global = true, value_name = "DIR", env = "HENCE_SCHEDULES")]
+    /// A folder of schedule files of your own, which come before the built-in ones; else the variable HENCE_SCHEDULES
+    #[arg(long, global = true, value_name = "DIR", env = "HENCE_SCHEDULES", hide_env = true)]
     pub schedules: Option<PathBuf>,
     #[command(subcommand)]
     pub command: Command,
@@ -33,9 +33,9 @@ pub struct Cli {
 pub enum ColorWhen {
     /// On a terminal, unless NO_COLOR is set or TERM is dumb
     Auto,
-    /// Always
+    /// Wherever the output goes
     Always,
-    /// Never
+    /// Nowhere
     Never,
 }
 

@@ -2,6 +2,7 @@
 
 use std::collections::BTreeMap;
 
+use hence_workbook::outcome::Totals;
 use hence_workbook::problem::{Place, Problem, Severity};
 use hence_workbook::report::{OptionReport, Report};
 
@@ -110,7 +111,15 @@ pub fn report(input: &str, output: &str, report: &Report) -> String {
         text.push_str(&format!("Base    {}\nTiming  {}\n", option.base, option.timing));
     }
     text.push('\n');
-    text.push_str(&table(&totals_rows(report)));
+    let over =
+        report.options.iter().find(|o| o.baseline && report.options.iter().any(|o| o.increment.is_some()));
+    if let Some(baseline) = over {
+        text.push_str(&absolute(report, "As it stands"));
+        text.push('\n');
+        text.push_str(&increments(report, &format!("Over {}", baseline.name)));
+    } else {
+        text.push_str(&absolute(report, "Option"));
+    }
     text.push('\n');
     for option in &report.options {
         text.push_str(&details(option));
@@ -139,31 +148,39 @@ fn grouped(options: &[OptionReport]) -> Vec<(Vec<&str>, &OptionReport)> {
     groups
 }
 
-fn totals_rows(report: &Report) -> Vec<Vec<String>> {
-    let over = report.options.iter().any(|o| o.increment.is_some());
-    let mut head: Vec<String> =
-        ["Option", "Benefits", "Costs", "PV benefits", "PV costs"].map(String::from).to_vec();
-    if over {
-        head.push("NPV as it stands".into());
-        head.push("NPV over baseline".into());
-    } else {
-        head.push("NPV".into());
-    }
-    head.push("Ratio".into());
-    head.push("Annual equivalent".into());
+/// The totals of every option as it stands.
+fn absolute(report: &Report, title: &str) -> String {
+    let mut rows = vec![headings(title)];
+    rows.extend(report.options.iter().map(|option| totals(&option.name, &option.absolute)));
+    table(&rows)
+}
+
+/// The totals of every option over the baseline, with its rank by net present value.
+fn increments(report: &Report, title: &str) -> String {
+    let mut head = headings(title);
+    head.push("Rank".to_owned());
     let mut rows = vec![head];
+    let npv = |option: &OptionReport| option.increment.map_or(0.0, |increment| increment.npv);
     for option in &report.options {
-        let a = &option.absolute;
-        let mut row = vec![option.name.clone()];
-        row.extend([a.benefits, a.costs, a.pv_benefits, a.pv_costs, a.npv].map(money));
-        if over {
-            row.push(option.increment.map_or_else(|| "baseline".into(), |i| money(i.npv)));
-        }
-        row.push(option.totals().ratio.map_or_else(|| "-".into(), |r| format!("{r:.2}")));
-        row.push(option.totals().annual.map_or_else(|| "-".into(), money));
+        let Some(increment) = &option.increment else { continue };
+        let mut row = totals(&option.name, increment);
+        row.push((1 + report.options.iter().filter(|other| npv(other) > npv(option)).count()).to_string());
         rows.push(row);
     }
-    rows
+    table(&rows)
+}
+
+fn headings(title: &str) -> Vec<String> {
+    let rest = ["Benefits", "Costs", "PV benefits", "PV costs", "NPV", "Ratio", "Annual equivalent"];
+    std::iter::once(title).chain(rest).map(String::from).collect()
+}
+
+fn totals(name: &str, totals: &Totals) -> Vec<String> {
+    let mut row = vec![name.to_owned()];
+    row.extend([totals.benefits, totals.costs, totals.pv_benefits, totals.pv_costs, totals.npv].map(money));
+    row.push(totals.ratio.map_or_else(|| "-".into(), |ratio| format!("{ratio:.2}")));
+    row.push(totals.annual.map_or_else(|| "-".into(), money));
+    row
 }
 
 /// What stands behind the table, a few lines an option.

@@ -215,6 +215,8 @@ pub struct Covered {
     pub roles: Vec<String>,
     /// The undiscounted sum of its numbers.
     pub total: f64,
+    /// Its numbers are filled or follow filled cells, so that no total could be taken before.
+    pub follows: bool,
 }
 
 /// What a cell with a setting holds.

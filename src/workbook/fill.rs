@@ -12,17 +12,17 @@ use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
-use crate::package::{Package, same_file, write_atomically};
+use crate::package::{Package, may_write, same_file, write_atomically};
 use crate::patch::{CellWrite, patch_sheet};
-use crate::plan::{Plan, Ways, plan_targets};
+use crate::plan::{Plan, Stale, Ways, plan_targets};
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::SheetRange;
 use crate::report::{Companion, Report, option_reports};
-use crate::resolve::{Options, inputs, resolve};
-use crate::sheets::{AuditInput, Meta, SheetNames, Touched, build};
-use crate::stale;
+use crate::resolve::{Options, resolve};
+use crate::sheets::{AuditInput, Meta, SheetNames, build};
+use crate::stale::{self, Dependents};
 use crate::valuation::{from_core, value};
 use crate::verify::{Expected, verify};
 
@@ -81,17 +81,13 @@ pub fn fill_file(
     force: bool,
 ) -> Result<Report> {
     let package = Package::open(input)?;
-    let refuse = |code, message: String, hint: &str| {
-        Err(Problem::error(code, Place::default(), message).hint(hint).into())
-    };
     if same_file(input, output) {
         let message = format!("the output {} is the input, which is never written", output.display());
-        return refuse("output-is-input", message, "give --out another name");
+        return Err(Problem::error("output-is-input", Place::default(), message)
+            .hint("give --out another name")
+            .into());
     }
-    if output.exists() && !force {
-        let message = format!("the output {} exists already", output.display());
-        return refuse("output-exists", message, "--force to replace it, or --out with another name");
-    }
+    may_write(output, force)?;
     let filled = fill(&package, request, catalogue)?;
     write_atomically(output, &filled.bytes, force)?;
     Ok(filled.report)
@@ -126,49 +122,44 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     let names = SheetNames::choose(&foreign_sheets(&book, &previous));
     let layout = Layout::new(&appraisal, &outcomes, &names);
 
-    let written = own::written(package, &book, &previous, &names)?;
-    let plan_with = |stale: &Touched| -> Result<(Plan, Vec<Setting>)> {
+    let earlier = own::written(package, &book, &previous, &names)?;
+    let plan_with = |stale: &Stale| -> Result<Plan> {
         let ways = Ways {
             previous: &previous,
-            written: &written,
+            written: &earlier,
             formulas: request.formulas,
             replace_formulas: request.replace_formulas,
             stale,
         };
         let mut plan = plan_targets(&appraisal, &outcomes, &layout, &ways);
-        let settings = match stated {
-            Some(basis) => plan_basis(&mut plan, package, &book, &appraisal, &outcomes, basis)?,
-            None => Vec::new(),
-        };
-        Ok((plan, settings))
+        if let Some(basis) = stated {
+            plan_basis(&mut plan, package, &book, &appraisal, &outcomes, basis)?;
+        }
+        Ok(plan)
     };
-    let (mut plan, mut settings) = plan_with(&Touched::new())?;
+    let mut plan = plan_with(&Stale::new())?;
     let carried = own::carried(package, &book, &previous, &names)?;
 
-    let dependents = stale::dependents(package, &book, &plan.changed)?;
-    problems.extend(dependents.warnings);
+    let written: Vec<SheetRange> = plan.changed.clone();
+    let dependents = stale::dependents(package, &book, &written)?;
     let foreign =
-        dependents.cells.into_iter().filter(|(sheet, _)| !previous.iter().any(|own| own.index == *sheet));
-    let stale: Touched = foreign.map(|(sheet, cells)| (book.sheets[sheet].name.clone(), cells)).collect();
-    if plan.cells.iter().any(|cell| !cell.filled && holds(&stale, &cell.at)) {
+        dependents.cells.iter().filter(|(sheet, _)| !previous.iter().any(|own| own.index == **sheet));
+    let stale: Stale =
+        foreign.map(|(sheet, cells)| (book.sheets[*sheet].name.clone(), cells.clone())).collect();
+    let waits = |at: &SheetRange| stale.get(&at.sheet).is_some_and(|cells| cells.contains(&at.range.first));
+    if plan.cells.iter().any(|cell| !cell.filled && waits(&cell.at)) {
         // Formulas left in targets that depend on what is written: what they show is from before.
-        (plan, settings) = plan_with(&stale)?;
+        plan = plan_with(&stale)?;
     }
     problems.append(&mut plan.problems);
-    problems.extend(stale_inputs(&appraisal, &stale));
-    let mut touched = stale.clone();
-    for at in &plan.changed {
-        touched.entry(at.sheet.clone()).or_default().insert(at.range.first);
-    }
-    for (name, cells) in &stale {
-        let writes = plan.writes.entry(name.clone()).or_default();
+    state(&mut appraisal, &plan, package, &book)?;
+    follow(&mut appraisal, &book, &written, &dependents, &mut problems);
+    problems.extend(dependents.warnings);
+    for (name, cells) in stale {
+        let writes = plan.writes.entry(name).or_default();
         for cell in cells {
-            writes.entry(*cell).or_insert(CellWrite::DropValue);
+            writes.entry(cell).or_insert(CellWrite::DropValue);
         }
-    }
-    for setting in settings {
-        appraisal.settings.retain(|old| old.at != setting.at);
-        appraisal.settings.push(setting);
     }
 
     let meta = meta(package, &outcomes, request);
@@ -182,7 +173,6 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         problems: &problems,
         carried: &carried,
         differs: &differs(),
-        touched: &touched,
     };
     let built = build(&input, &layout)?;
     let mut patched: BTreeMap<String, Vec<u8>> = BTreeMap::new();
@@ -208,6 +198,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     let mut changes = grafted.changes;
     changes.replace.extend(patched);
     let bytes = package.write(&changes)?;
+    changes.forget_contents();
     verify(
         package,
         &bytes,
@@ -256,7 +247,6 @@ fn require_basis(
 }
 
 /// The new basis goes into every cell that states the old one, and a timing that it states into the timing's cell.
-/// What those cells state then is returned.
 fn plan_basis(
     plan: &mut Plan,
     package: &Package,
@@ -264,8 +254,7 @@ fn plan_basis(
     appraisal: &Appraisal,
     outcomes: &[ChoiceOutcome],
     basis: &str,
-) -> Result<Vec<Setting>> {
-    let mut settings = Vec::new();
+) -> Result<()> {
     let mut seen = BTreeSet::new();
     for (choice, outcome) in appraisal.choices.iter().zip(outcomes) {
         let Some(at) = &choice.basis.at else {
@@ -286,18 +275,13 @@ fn plan_basis(
         {
             let held = cell_held(package, book, cell)?;
             let write = CellWrite::Text(outcome.timing.to_string());
-            settings.push(overwrite(plan, cell, timing, &held, "timing", write)?);
+            overwrite(plan, timing, &held, "timing", write)?;
         }
         if !seen.insert(at.clone()) {
             continue;
         }
         let held = cell_held(package, book, at)?;
         if shown(&held) == basis {
-            settings.push(Setting {
-                at: at.clone(),
-                from: choice.basis.from.clone(),
-                value: stated_by(&held),
-            });
             continue;
         }
         // Where the cell held a number, formulas may count with it: a flat yearly rate stays a number.
@@ -306,8 +290,6 @@ fn plan_basis(
                 if outcome.basis.stated() == (None, None) && outcome.basis.schedule().is_none() =>
             {
                 if old == rate {
-                    let from = choice.basis.from.clone();
-                    settings.push(Setting { at: at.clone(), from, value: Stated::Number(*old) });
                     continue;
                 }
                 CellWrite::Number(*rate)
@@ -322,63 +304,89 @@ fn plan_basis(
             }
             _ => CellWrite::Text(basis.to_owned()),
         };
-        settings.push(overwrite(plan, at, &choice.basis, &held, "basis", write)?);
+        overwrite(plan, &choice.basis, &held, "basis", write)?;
     }
-    Ok(settings)
+    Ok(())
 }
 
-/// Writes into a cell that was read, unless it holds a formula; what the cell states then.
+/// The settings as the output will hold them: a basis (or a timing) that this fill writes is what it states.
+fn state(appraisal: &mut Appraisal, plan: &Plan, package: &Package, book: &Workbook) -> Result<()> {
+    // The workbook's own basis is not read where the command line gives one.
+    for choice in &appraisal.choices {
+        let Some(at) = &choice.basis.at else { continue };
+        if appraisal.settings.iter().any(|setting| setting.at == *at) {
+            continue;
+        }
+        let value = match cell_held(package, book, at)?.value {
+            Value::Number(x) => Stated::Number(x),
+            Value::Text(text) => Stated::Text(text),
+            _ => Stated::Text(String::new()),
+        };
+        let from = choice.basis.from.clone();
+        appraisal.settings.push(Setting { at: at.clone(), from, value });
+    }
+    for setting in &mut appraisal.settings {
+        let writes = plan.writes.get(&setting.at.sheet);
+        match writes.and_then(|writes| writes.get(&setting.at.range.first)) {
+            Some(CellWrite::Number(x)) => setting.value = Stated::Number(*x),
+            Some(CellWrite::Text(text)) => setting.value = Stated::Text(text.clone()),
+            _ => {}
+        }
+    }
+    Ok(())
+}
+
+/// Marks the rows of the coverage whose numbers follow filled cells, and warns of flows that do: they were valued as they
+/// stood before.
+fn follow(
+    appraisal: &mut Appraisal,
+    book: &Workbook,
+    written: &[SheetRange],
+    dependents: &Dependents,
+    problems: &mut Vec<Problem>,
+) {
+    let depends = |at: &SheetRange| {
+        let sheet = book.sheet_index(&at.sheet);
+        let cells = sheet.and_then(|index| dependents.cells.get(&index));
+        cells.is_some_and(|cells| {
+            cells.range(at.range.first..=at.range.last).any(|&cell| at.range.contains(cell))
+        })
+    };
+    for row in &mut appraisal.coverage {
+        let filled =
+            |cell: &SheetRange| cell.sheet == row.at.sheet && row.at.range.contains(cell.range.first);
+        row.follows = written.iter().any(filled) || depends(&row.at);
+    }
+    let mut seen = BTreeSet::new();
+    for stream in appraisal.choices.iter().flat_map(|choice| &choice.streams) {
+        if depends(&stream.at) && seen.insert(stream.at.clone()) {
+            let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+            let message =
+                "its formulas depend, or may depend, on cells that are filled: it was valued as it stood";
+            problems.push(Problem::warning("flow-follows", place, message).hint(
+                "open the output, let it recalculate, look at the verdict, and fill it again if it differs",
+            ));
+        }
+    }
+}
+
+/// Writes into a cell that was read, unless it holds a formula.
 fn overwrite<T>(
     plan: &mut Plan,
-    at: &SheetRange,
     given: &Given<T>,
     held: &ReadCell,
     what: &str,
     write: CellWrite,
-) -> Result<Setting> {
+) -> Result<()> {
+    let Some(at) = &given.at else { return Ok(()) };
     if held.formula.is_some() {
         let message = format!("the {what} cell holds a formula, which would be lost");
         return Err(Problem::error("basis-formula", given_place(given), message)
             .hint(format!("give the name hence_{what} to the cell that the formula takes it from"))
             .into());
     }
-    let value = match &write {
-        CellWrite::Number(x) => Stated::Number(*x),
-        CellWrite::Text(text) => Stated::Text(text.clone()),
-        _ => stated_by(held),
-    };
     plan.write(at.clone(), what.to_owned(), shown(held), write);
-    Ok(Setting { at: at.clone(), from: given.from.clone(), value })
-}
-
-fn stated_by(held: &ReadCell) -> Stated {
-    match held.value {
-        Value::Number(x) => Stated::Number(x),
-        _ => Stated::Text(shown(held)),
-    }
-}
-
-fn holds(cells: &Touched, at: &SheetRange) -> bool {
-    cells.get(&at.sheet).is_some_and(|cells| cells.contains(&at.range.first))
-}
-
-/// Inputs that depend on cells this fill changes: what was read of them is from before.
-fn stale_inputs(appraisal: &Appraisal, stale: &Touched) -> Vec<Problem> {
-    let mut found = Vec::new();
-    for (at, from) in inputs(&appraisal.choices, &appraisal.axes) {
-        let Some(cells) = stale.get(&at.sheet) else { continue };
-        let Some(cell) = at.range.cells().find(|cell| cells.contains(cell)) else { continue };
-        let message = format!(
-            "its formulas depend on cells that this fill changes (first {cell}), so what was read may be stale"
-        );
-        let problem =
-            Problem::warning("stale-input", Place::cells(&at.sheet, at.range).called(&from), message)
-                .hint("open and save the output in a spreadsheet program, and fill it again");
-        if !found.contains(&problem) {
-            found.push(problem);
-        }
-    }
-    found
+    Ok(())
 }
 
 fn cell_held(package: &Package, book: &Workbook, at: &SheetRange) -> Result<ReadCell> {

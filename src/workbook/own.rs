@@ -4,12 +4,14 @@ use std::collections::BTreeMap;
 
 use crate::model::Workbook;
 use crate::package::Package;
+use crate::patch::Cached;
 use crate::problem::{Place, Problem, Result};
-use crate::reading::{Sheets, Value};
+use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::{Cell, NameTarget, Range, SheetRange};
 use crate::sheets::changes::{AFTER as AFTER_COLUMN, CELL as CELL_COLUMN, SHEET as SHEET_COLUMN};
-use crate::sheets::own::{DIGEST, OWN, digest};
+use crate::sheets::own::{DIGEST, FORMULA_MARK, OWN, digest, number_mark, text_mark};
 use crate::sheets::{Carried, SheetNames};
+use crate::writer::{Content, Style};
 
 /// One of hence's own sheets, found by its mark.
 #[derive(Clone, Debug)]
@@ -20,7 +22,7 @@ pub struct OwnSheet {
     pub name: String,
     /// What hence wrote on it lies here; whatever stands elsewhere was typed by a person.
     pub used: Range,
-    /// The digest of the texts that hence wrote, where the mark still has it.
+    /// The digest of what hence wrote, where the mark still has it.
     pub digest: Option<String>,
 }
 
@@ -43,7 +45,8 @@ pub fn own_sheets(book: &Workbook) -> Vec<OwnSheet> {
 /// What people typed beside hence's cells on its own sheets, to be put back on the new ones.
 ///
 /// # Errors
-/// `own-sheet-edited` where a text of hence's own was changed or typed over: nothing a person typed is lost in silence.
+/// `own-sheet-edited` where something of hence's own was changed or typed over, or where cells have comments: nothing that
+/// a person typed is lost in silence.
 pub fn carried(
     package: &Package,
     book: &Workbook,
@@ -58,34 +61,39 @@ pub fn carried(
     let mut sheets = Sheets::open(package, book)?;
     for own in previous {
         let at = SheetRange { sheet: own.name.clone(), range: own.used };
-        let texts: Vec<(Cell, String)> = sheets
-            .range(&at)?
-            .iter()
-            .filter_map(|(cell, read)| match (&read.value, &read.formula) {
-                (Value::Text(text), None) => Some((cell, text.clone())),
-                _ => None,
-            })
-            .collect();
-        if own.digest.as_ref() != Some(&digest(&texts)) {
+        let cells: Vec<(Cell, String)> =
+            sheets.range(&at)?.iter().filter_map(|(cell, read)| Some((cell, mark(read)?))).collect();
+        let mut edited = |message, hint| {
             let place = Place { sheet: Some(own.name.clone()), ..Place::default() };
-            problems.push(
-                Problem::error(
-                    "own-sheet-edited",
-                    place,
-                    "a text that hence wrote on this sheet was changed",
-                )
-                .hint("move notes outside of hence's own cells, or delete the sheet, and fill again"),
+            problems.push(Problem::error("own-sheet-edited", place, message).hint(hint));
+        };
+        if own.digest.as_ref() != Some(&digest(&cells)) {
+            edited(
+                "something that hence wrote on this sheet was changed, or typed between its cells",
+                "move notes below or to the right of hence's own cells, or delete the sheet, and fill again",
             );
-            continue;
         }
-        let sheet = kind_of(&own.name, names);
-        sheets.visit(&own.name, |cell, value| {
-            if !own.used.contains(cell)
-                && let Some(text) = typed(&value)
-            {
-                notes.push(Carried { sheet: sheet.clone(), cell, text });
+        if has_comments(package, &book.sheets[own.index].part)? {
+            edited(
+                "cells of this sheet have comments, which would be lost with it",
+                "move them into cells below hence's own, or into the workbook's other sheets, and fill again",
+            );
+        }
+        let mut typed = Vec::new();
+        sheets.visit(&own.name, |cell, _| {
+            if !own.used.contains(cell) {
+                typed.push(SheetRange { sheet: own.name.clone(), range: Range::cell(cell) });
             }
         })?;
+        sheets.load(&typed)?;
+        let sheet = kind_of(&own.name, names);
+        for at in typed {
+            let cell = at.range.first;
+            let grid = sheets.range(&at)?;
+            if let Some((content, style)) = grid.get(cell).and_then(content) {
+                notes.push(Carried { sheet: sheet.clone(), cell, content, style });
+            }
+        }
     }
     if problems.is_empty() { Ok(notes) } else { Err(problems.into()) }
 }
@@ -121,6 +129,23 @@ pub fn written(
     Ok(formulas)
 }
 
+/// What a cell adds to the digest of its sheet.
+fn mark(read: &ReadCell) -> Option<String> {
+    match (&read.value, &read.formula) {
+        (_, Some(_)) => Some(FORMULA_MARK.to_owned()),
+        (Value::Blank, None) => None,
+        (Value::Number(x) | Value::Date(x), None) => Some(number_mark(*x)),
+        (Value::Text(text) | Value::Error(text), None) => (!text.is_empty()).then(|| text_mark(text)),
+        (Value::Bool(truth), None) => Some(text_mark(truth_word(*truth))),
+    }
+}
+
+/// Whether notes hang on cells of the sheet, old ones or threads.
+fn has_comments(package: &Package, part: &str) -> Result<bool> {
+    let comments = |kind: &str| kind.ends_with("/comments") || kind.ends_with("/threadedComment");
+    Ok(package.relationships(part)?.iter().any(|relationship| comments(&relationship.kind)))
+}
+
 /// The new sheet that takes the notes of an old one; of a renamed one, the summary.
 fn kind_of(old: &str, names: &SheetNames) -> String {
     let all =
@@ -129,12 +154,25 @@ fn kind_of(old: &str, names: &SheetNames) -> String {
     all.into_iter().find(|name| stem(name) == stem(old)).unwrap_or(&names.summary).clone()
 }
 
-fn typed(value: &Value) -> Option<String> {
-    match value {
-        Value::Blank => None,
-        Value::Number(x) | Value::Date(x) => Some(x.to_string()),
-        Value::Text(text) | Value::Error(text) => Some(text.clone()),
-        Value::Bool(true) => Some("TRUE".to_owned()),
-        Value::Bool(false) => Some("FALSE".to_owned()),
-    }
+/// What a person typed into a cell, and how it is shown again.
+fn content(read: &ReadCell) -> Option<(Content, Style)> {
+    let style = match &read.value {
+        Value::Date(_) => Style::Date,
+        Value::Number(_) => Style::Exact,
+        _ => Style::Text,
+    };
+    let content = match (&read.formula, &read.value) {
+        (Some(text), Value::Number(x) | Value::Date(x)) => Content::Formula(text.clone(), Cached::Number(*x)),
+        (Some(text), Value::Text(result)) => Content::Formula(text.clone(), Cached::Text(result.clone())),
+        (Some(text), _) => Content::Formula(text.clone(), Cached::None),
+        (None, Value::Number(x) | Value::Date(x)) => Content::Number(*x),
+        (None, Value::Text(text) | Value::Error(text)) => Content::Text(text.clone()),
+        (None, Value::Bool(truth)) => Content::Text(truth_word(*truth).to_owned()),
+        (None, Value::Blank) => return None,
+    };
+    Some((content, style))
+}
+
+fn truth_word(truth: bool) -> &'static str {
+    if truth { "TRUE" } else { "FALSE" }
 }

@@ -15,7 +15,7 @@ mod sniff;
 
 pub use container::{MAX_ENTRIES, MAX_FILE, MAX_PART, MAX_RATIO, MAX_TOTAL, RATIO_FROM};
 pub use edit::{NewRelationship, edit_content_types, edit_relationships};
-pub use output::{Changes, same_file, write_atomically};
+pub use output::{Changes, may_write, same_file, write_atomically};
 pub use parts::{Relationship, relationships_part, resolve_target};
 
 pub(crate) use container::Inflated;
@@ -178,6 +178,14 @@ impl Package {
     /// **Errors**: `damaged-zip` where the bytes are not of the stated size and checksum.
     pub fn part(&self, name: &str) -> Result<Option<Vec<u8>>> {
         self.entry(name).map(|entry| entry.read(&self.bytes)).transpose()
+    }
+
+    /// Whether two packages hold a part packed alike, and so with the same bytes.
+    pub(crate) fn packs_alike(&self, other: &Package, name: &str) -> bool {
+        match (self.entry(name), other.entry(name)) {
+            (Some(a), Some(b)) => a.packed_as(&self.bytes) == b.packed_as(&other.bytes),
+            _ => false,
+        }
     }
 
     /// A reader of a part's bytes, for parts that need not be held whole.

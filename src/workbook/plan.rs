@@ -1,6 +1,6 @@
 //! What a fill does to each target cell: write it, tick it, or report it.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 use crate::appraisal::{Appraisal, Held, Target};
 use crate::formulas::{expected, is_own_text, target_writes};
@@ -10,7 +10,7 @@ use crate::own::OwnSheet;
 use crate::patch::{Cached, CellWrite};
 use crate::problem::{Place, Problem};
 use crate::references::{Cell, Range, SheetRange, quote_sheet};
-use crate::sheets::{Change, TargetCell, Touched, role_words};
+use crate::sheets::{Change, TargetCell, role_words};
 use crate::tolerance;
 use crate::valuation::cell_of;
 
@@ -48,6 +48,9 @@ impl Plan {
     }
 }
 
+/// Cells by sheet whose stored results a fill makes stale.
+pub type Stale = BTreeMap<String, BTreeSet<Cell>>;
+
 /// What an earlier fill left, and how this one is to go about targets.
 pub struct Ways<'a> {
     /// hence's own sheets in the workbook.
@@ -58,8 +61,8 @@ pub struct Ways<'a> {
     pub formulas: bool,
     /// Replace formulas that are found, instead of comparing them.
     pub replace_formulas: bool,
-    /// Cells whose stored results this fill makes stale, so that they cannot be compared.
-    pub stale: &'a Touched,
+    /// Formulas among these cells cannot be compared.
+    pub stale: &'a Stale,
 }
 
 /// Decides every target cell of every option.

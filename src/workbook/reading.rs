@@ -164,9 +164,8 @@ impl<'a> Sheets<'a> {
                 Problem::error("missing-sheet", place, "the workbook has no sheet of this name").into()
             );
         };
-        let wanted = |cell: Cell| ranges.iter().any(|range| range.contains(cell));
         let xml = self.package.part(part)?.unwrap_or_default();
-        let found = scan::scan(part, &xml, wanted)?;
+        let found = scan::scan(part, &xml, &ranges)?;
         drop(xml);
         let mut reader =
             self.values.worksheet_cells_reader(sheet).map_err(|e| unreadable(place.clone(), &e))?;
@@ -177,10 +176,14 @@ impl<'a> Sheets<'a> {
             .collect();
         let read = self.read.entry(sheet.to_owned()).or_default();
         let mut odd = Vec::new();
+        let last = found.cells.keys().map(|cell| cell.row).max();
         while let Some((cell, style)) =
             reader.next_cell_with_style_id().map_err(|e| unreadable(place.clone(), &e))?
         {
             let (row, col) = cell.get_position();
+            if last.is_none_or(|last| row > last) {
+                break;
+            }
             let at = Cell { row, col };
             let Some(raw) = found.cells.get(&at) else { continue };
             match exact(raw, value_of(cell.get_value())) {

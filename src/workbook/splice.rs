@@ -100,15 +100,32 @@ pub(crate) fn escape(text: &str) -> Option<String> {
 
 /// The tokens of a part, in order. Refuses what the scanner refuses.
 pub(crate) struct Tokens<'a> {
-    text: &'a str,
     scanner: Scanner<'a>,
 }
 
 impl<'a> Tokens<'a> {
     pub(crate) fn new(xml: &'a [u8]) -> Result<Self> {
-        let scanner = Scanner::new("the part", xml)?;
-        // The scanner has checked that it is UTF-8.
-        Ok(Tokens { text: std::str::from_utf8(xml).unwrap_or_default(), scanner })
+        Ok(Tokens { scanner: Scanner::new("the part", xml)? })
+    }
+
+    /// The whole part.
+    pub(crate) fn text(&self) -> &'a str {
+        self.scanner.text()
+    }
+
+    /// See [`Scanner::content`].
+    pub(crate) fn content(&self, name: &str) -> Option<&'a str> {
+        self.scanner.content(name.as_bytes())
+    }
+
+    /// See [`Scanner::pass_over`].
+    pub(crate) fn pass_over(&mut self, name: &str, unless: &[&str]) {
+        self.scanner.pass_over(name.as_bytes(), unless);
+    }
+
+    /// Goes on after so many bytes of content.
+    pub(crate) fn pass(&mut self, bytes: usize) {
+        self.scanner.pass(bytes);
     }
 
     /// How many elements are open after the token last given.
@@ -136,7 +153,7 @@ impl<'a> Tokens<'a> {
             }
             Event::DocType(_) | Event::Comment(_) | Event::PI(_) | Event::Eof => Kind::Other,
         };
-        Ok(Some(Token { kind, start: token.span.start, raw: &self.text[token.span] }))
+        Ok(Some(Token { kind, start: token.span.start, raw: &self.text()[token.span] }))
     }
 }
 

@@ -36,7 +36,8 @@ mod row {
     pub const BENEFITS: u32 = ALL_COSTS + 3;
     pub const ALL_BENEFITS: u32 = BENEFITS + LINES;
     pub const NET: u32 = ALL_BENEFITS + 1;
-    pub const FACTOR: u32 = NET + 2;
+    pub const FILLED: u32 = NET + 2;
+    pub const FACTOR: u32 = FILLED + 1;
     pub const PV: u32 = FACTOR + 1;
     pub const RESULTS: u32 = PV + 2;
 }
@@ -109,12 +110,7 @@ fn settings(sheet: &mut Form, names: &mut Names) {
     );
     let settings = [
         (row::BASE, "Base year", "base", "the year to which values are discounted"),
-        (
-            row::BASIS,
-            "Discount rate",
-            "basis",
-            "a rate, a rate line or the id of a schedule, as your guidance has it",
-        ),
+        (row::BASIS, "Discount rate", "basis", "a rate, a rate line or a schedule's id"),
         (row::TIMING, "Timing", "timing", "where in their year flows and the base stand"),
     ];
     for (row, label, role, remark) in settings {
@@ -196,6 +192,10 @@ fn flows(sheet: &mut Form, names: &mut Names) {
 }
 
 fn results(sheet: &mut Form, names: &mut Names) {
+    sheet.text(row::FILLED, 0, Look::Section, "Filled in the audited copy");
+    for col in FIRST..=LAST {
+        sheet.blank(row::FILLED, col, Look::Section);
+    }
     for (row, label, role, look) in [
         (row::FACTOR, "Discount factor", "factor", Look::Factor),
         (row::PV, "Present value of the net flow", "pv", Look::Money),

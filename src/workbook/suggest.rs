@@ -35,7 +35,7 @@ pub struct Guess {
 /// Finds the years, the flows, the factors and the results of a workbook that has no names yet.
 ///
 /// # Returns
-/// Guesses in sheet order, the years of a sheet first. Roles that the workbook already names are left out. Where
+/// Guesses in sheet order, the years of a sheet first. Roles and cells that the workbook already names are left out. Where
 /// several sheets hold flows, each is taken for an option and its names end in `__<sheet>`. Rows whose
 /// headings say nothing and whose signs say nothing are not guessed.
 ///
@@ -43,7 +43,7 @@ pub struct Guess {
 /// Only where cells cannot be read.
 pub fn suggest(package: &Package, book: &Workbook) -> Result<Vec<Guess>> {
     let mut sheets = Sheets::open(package, book)?;
-    let (known, own) = already(book);
+    let (known, at, own) = already(book);
     let mut found = Vec::new();
     for sheet in book.sheets.iter().filter(|sheet| sheet.kind == SheetKind::Worksheet) {
         if own.contains(&sheet.name) {
@@ -69,9 +69,10 @@ pub fn suggest(package: &Package, book: &Workbook) -> Result<Vec<Guess>> {
             }
             let suffix = option.as_ref().map(|option| format!("__{option}")).unwrap_or_default();
             let name = format!("{}{}{suffix}", roles::PREFIX, guess.word());
+            let covered = at.iter().any(|at| at.sheet == sheet && at.range.intersects(&guess.range));
             let reads_back =
                 roles::parse_name(&name).is_some_and(|read| read.is_ok_and(|read| read.role == guess.role));
-            if reads_back && taken.insert(key(&name)) {
+            if !covered && reads_back && taken.insert(key(&name)) {
                 let at = SheetRange { sheet: sheet.clone(), range: guess.range };
                 named.push(Guess { name, at, why: guess.why });
             }
@@ -80,19 +81,21 @@ pub fn suggest(package: &Package, book: &Workbook) -> Result<Vec<Guess>> {
     Ok(named)
 }
 
-/// The names there are, and the sheets that are hence's own.
-fn already(book: &Workbook) -> (BTreeSet<String>, BTreeSet<String>) {
-    let (mut known, mut own) = (BTreeSet::new(), BTreeSet::new());
+/// The names there are, the cells that have one, and the sheets that are hence's own.
+fn already(book: &Workbook) -> (BTreeSet<String>, Vec<SheetRange>, BTreeSet<String>) {
+    let (mut known, mut cells, mut own) = (BTreeSet::new(), Vec::new(), BTreeSet::new());
     for defined in &book.names {
         let Some(Ok(name)) = roles::parse_name(&defined.name) else { continue };
         known.insert(key(&defined.name));
-        if name.role.info().way == Way::Own
-            && let crate::references::NameTarget::Cells(at) = book.resolve(defined)
-        {
-            own.insert(at.sheet);
+        if let crate::references::NameTarget::Cells(at) = book.resolve(defined) {
+            if name.role.info().way == Way::Own {
+                own.insert(at.sheet);
+            } else {
+                cells.push(at);
+            }
         }
     }
-    (known, own)
+    (known, cells, own)
 }
 
 /// A guess before it has its name.
@@ -121,6 +124,8 @@ struct Page {
 /// One row (or column) along the years.
 struct Line {
     heading: String,
+    /// What else stands before the years: a unit, the side of the ledger.
+    beside: String,
     range: Range,
     numbers: Vec<f64>,
 }
@@ -152,9 +157,9 @@ impl Page {
     /// Every headed line after the years, whether it holds numbers or not.
     fn lines(&self, run: &Run) -> Vec<Line> {
         let (first, last) = (run.first(), run.last());
-        let mut headings: BTreeMap<u32, (bool, String)> = BTreeMap::new();
+        let mut texts: BTreeMap<u32, Vec<(u32, String)>> = BTreeMap::new();
         let mut numbers: BTreeMap<u32, Vec<f64>> = BTreeMap::new();
-        let mut texts: BTreeSet<u32> = BTreeSet::new();
+        let mut others: BTreeSet<u32> = BTreeSet::new();
         for (cell, value) in &self.cells {
             let (line, across) = run.turned(*cell);
             if line <= run.line() {
@@ -163,28 +168,37 @@ impl Page {
             }
             match value {
                 Value::Text(text) if across < first => {
-                    let word = text.chars().filter(|c| c.is_alphabetic()).count() >= 3;
-                    let heading = headings.entry(line).or_default();
-                    if word || !heading.0 {
-                        *heading = (word, text.trim().to_owned());
-                    }
+                    texts.entry(line).or_default().push((across, text.trim().to_owned()));
                 }
                 Value::Number(number) if (first..=last).contains(&across) => {
                     numbers.entry(line).or_default().push(*number)
                 }
                 Value::Blank => {}
                 _ if (first..=last).contains(&across) => {
-                    texts.insert(line);
+                    others.insert(line);
                 }
                 _ => {}
             }
         }
-        let lines = headings.into_iter().filter(|(line, _)| !texts.contains(line));
+        // A text that many lines have in one place is a unit or the side of the ledger, not a line's own heading.
+        let mut times: BTreeMap<(u32, String), usize> = BTreeMap::new();
+        for text in texts.values().flatten() {
+            *times.entry(text.clone()).or_default() += 1;
+        }
+        let lines = texts.into_iter().filter(|(line, _)| !others.contains(line));
         lines
-            .map(|(line, (_, heading))| Line {
-                heading,
-                range: run.along(line),
-                numbers: numbers.remove(&line).unwrap_or_default(),
+            .map(|(line, mut texts)| {
+                let word = |text: &str| text.chars().filter(|c| c.is_alphabetic()).count() >= 3;
+                let own = texts.iter().rposition(|text| word(&text.1) && times[text] < 3);
+                let own = own.or_else(|| texts.iter().rposition(|text| word(&text.1)));
+                let (_, heading) = texts.remove(own.unwrap_or(texts.len() - 1));
+                let beside: Vec<String> = texts.into_iter().map(|(_, text)| text).collect();
+                Line {
+                    heading,
+                    beside: beside.join(", "),
+                    range: run.along(line),
+                    numbers: numbers.remove(&line).unwrap_or_default(),
+                }
             })
             .collect()
     }
@@ -193,34 +207,39 @@ impl Page {
     fn flows(&self, sheets: &mut Sheets, run: &Run, lines: &[Line]) -> Result<Vec<Draft>> {
         let mut section = None;
         let mut drafts: Vec<Draft> = Vec::new();
+        let mut sums: Vec<Option<Vec<SheetRange>>> = Vec::new();
         for line in lines {
-            let meaning = words::meaning(&line.heading);
+            sums.push(self.sums(sheets, line)?);
+        }
+        for (line, sum) in lines.iter().zip(&sums) {
+            let meaning = words::meaning(&line.heading).or_else(|| words::meaning(&line.beside));
             if line.numbers.is_empty() {
                 if let Some(Meaning::Flow(role, word)) = meaning {
                     section = Some((role, word));
                 }
                 continue;
             }
-            let grid = sheets.range(&SheetRange { sheet: self.name.clone(), range: line.range })?;
-            let sums = grid.iter().filter(|(_, cell)| cell.formula.is_some()).all(|(_, cell)| {
-                let parts =
-                    cell.formula.as_deref().and_then(|text| sum_of(text, &self.name)).unwrap_or_default();
-                parts.len() > 1 || parts.iter().any(|part| part.range.len() > 1)
-            });
-            let formulas = grid.iter().any(|(_, cell)| cell.formula.is_some());
-            if formulas && sums {
+            if sum.is_some() {
                 continue;
             }
+            let total = lines.iter().zip(&sums).find_map(|(total, parts)| {
+                let holds = parts.as_ref()?.iter().any(|part| part.range.intersects(&line.range));
+                let role = words::side(&total.heading)?;
+                holds.then(|| (role, total.heading.clone()))
+            });
             let (role, why) = match meaning {
                 Some(Meaning::Flow(role, word)) => {
                     (role, format!("its heading `{}` says `{word}`", line.heading))
                 }
                 Some(_) => continue,
-                None => match (section, signs(&line.numbers)) {
-                    (Some((role, word)), _) => (role, format!("it stands in a section headed `{word}`")),
-                    (None, (true, false)) => (Role::Cost, "its numbers are all negative".to_owned()),
-                    (None, (true, true)) => (Role::Flow, "its numbers have both signs".to_owned()),
-                    (None, _) => continue,
+                None => match (total, section, signs(&line.numbers)) {
+                    (Some((role, total)), ..) => (role, format!("it is added up in `{total}`")),
+                    (None, Some((role, word)), _) => {
+                        (role, format!("it stands in a section headed `{word}`"))
+                    }
+                    (None, None, (true, false)) => (Role::Cost, "its numbers are all negative".to_owned()),
+                    (None, None, (true, true)) => (Role::Flow, "its numbers have both signs".to_owned()),
+                    (None, None, _) => continue,
                 },
             };
             let years = run.years();
@@ -228,6 +247,24 @@ impl Page {
             drafts.push(Draft { role, stream: Some(slug(&line.heading)), range: line.range, why });
         }
         Ok(drafts)
+    }
+
+    /// The cells that a line of formulas adds up, where it does nothing else; nothing for a line of flows.
+    fn sums(&self, sheets: &mut Sheets, line: &Line) -> Result<Option<Vec<SheetRange>>> {
+        let grid = sheets.range(&SheetRange { sheet: self.name.clone(), range: line.range })?;
+        let mut all = Vec::new();
+        for (_, cell) in grid.iter().filter(|(_, cell)| cell.formula.is_some()) {
+            let parts = cell.formula.as_deref().and_then(|text| sum_of(text, &self.name)).unwrap_or_default();
+            if parts.len() <= 1 && parts.iter().all(|part| part.range.len() <= 1) {
+                return Ok(None);
+            }
+            // Subtracted cells are no parts of a total.
+            if cell.formula.as_deref().is_some_and(|text| !text.contains('-')) {
+                all.extend(parts);
+            }
+        }
+        let formulas = grid.iter().any(|(_, cell)| cell.formula.is_some());
+        Ok(formulas.then_some(all))
     }
 
     /// Cells with one number beside a heading: the base year and the rate.

@@ -279,7 +279,7 @@ pub fn package(sheets: &[Sheet], names: &[(&str, &str)]) -> Result<Vec<u8>> {
     for sheet in sheets {
         check(sheet)?;
     }
-    let file = tempfile::NamedTempFile::new().map_err(|e| failed("no temporary file can be made", &e))?;
+    let file = tempfile::NamedTempFile::new().map_err(|e| unwritten("no temporary file can be made", &e))?;
     let path = file.path().to_str().ok_or_else(|| failed("the temporary folder's path is not text", &""))?;
     let book = Workbook::new(path).map_err(|e| failed("the audit sheets cannot be started", &e))?;
     let mut written = Ok(());
@@ -291,12 +291,20 @@ pub fn package(sheets: &[Sheet], names: &[(&str, &str)]) -> Result<Vec<u8>> {
     }
     // Closed even after a failure: a drop would write the file all the same.
     let closed = book.close();
-    written.and(closed).map_err(|e| failed("the audit sheets cannot be written", &e))?;
-    std::fs::read(path).map_err(|e| failed("the audit sheets cannot be read back", &e))
+    written.map_err(|e| failed("the audit sheets cannot be written", &e))?;
+    closed.map_err(|e| unwritten("the audit sheets cannot be written", &e))?;
+    std::fs::read(path).map_err(|e| unwritten("the audit sheets cannot be read back", &e))
 }
 
 fn failed(what: &str, why: &dyn std::fmt::Display) -> crate::problem::WorkbookError {
     Problem::error("own-sheet", Place::default(), format!("{what}: {why}")).into()
+}
+
+/// The error for a temporary file, which the writer cannot do without.
+fn unwritten(what: &str, why: &dyn std::fmt::Display) -> crate::problem::WorkbookError {
+    Problem::error("cannot-write", Place::default(), format!("{what}: {why}"))
+        .hint("make room in the folder for temporary files, or name another one in TMPDIR")
+        .into()
 }
 
 fn check(sheet: &Sheet) -> Result<()> {

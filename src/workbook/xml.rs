@@ -6,10 +6,14 @@
 use std::borrow::Cow;
 use std::ops::Range;
 
+use memchr::memmem;
 use quick_xml::events::{BytesStart, Event};
 use quick_xml::{Reader, XmlVersion};
 
 use crate::problem::{Place, Problem, Result};
+
+/// What every formula element of a sheet part holds, and hardly anything else does.
+pub(crate) const FORMULA_MARKS: &[&str] = &["<f", ":f"];
 
 /// Elements inside elements, at most. Parts that spreadsheet programs write stay below 50.
 pub const MAX_DEPTH: usize = 256;
@@ -18,7 +22,11 @@ pub const MAX_DEPTH: usize = 256;
 pub struct Scanner<'a> {
     reader: Reader<&'a [u8]>,
     part: String,
-    start: usize,
+    text: &'a str,
+    /// Bytes that the reader did not see: a byte-order mark, and what was passed over.
+    unseen: usize,
+    /// There are no comments, character data or instructions, in which an end tag would be none.
+    plain: bool,
     shape: Shape,
 }
 
@@ -38,13 +46,49 @@ impl<'a> Scanner<'a> {
     /// **Errors**: `bad-utf8`, `encoding`.
     pub fn new(part: &str, xml: &'a [u8]) -> Result<Self> {
         check_encoding(part, xml)?;
-        if let Err(at) = std::str::from_utf8(xml) {
-            return Err(bad_utf8(part, at.valid_up_to() as u64).into());
-        }
-        let start = if xml.starts_with(BOM) { BOM.len() } else { 0 };
-        let mut reader = Reader::from_reader(&xml[start..]);
+        let text = std::str::from_utf8(xml).map_err(|at| bad_utf8(part, at.valid_up_to() as u64))?;
+        let unseen = if xml.starts_with(BOM) { BOM.len() } else { 0 };
+        let head = memmem::find(xml, b"?>").map_or(0, |end| end + 2);
+        let plain = [b"<!", b"<?"].iter().all(|mark| memmem::find(&xml[head..], *mark).is_none());
+        let mut reader = Reader::from_reader(&xml[unseen..]);
         configure(&mut reader);
-        Ok(Scanner { reader, part: part.to_owned(), start, shape: Shape::default() })
+        Ok(Scanner { reader, part: part.to_owned(), text, unseen, plain, shape: Shape::default() })
+    }
+
+    /// The whole part.
+    pub fn text(&self) -> &'a str {
+        self.text
+    }
+
+    /// What stands between the tag just read and the next end tag of that qualified name, where that can be told
+    /// without reading it. It is the element's content if no element of that name lies inside, as with rows.
+    pub fn content(&self, name: &[u8]) -> Option<&'a str> {
+        let rest = &self.text[self.position()..];
+        let mark = [b"</", name].concat();
+        let mut ends = memmem::find_iter(rest.as_bytes(), &mark).filter(|end| {
+            let after = rest.as_bytes().get(end + mark.len());
+            after.is_some_and(|c| *c == b'>' || c.is_ascii_whitespace())
+        });
+        if !self.plain {
+            return None;
+        }
+        ends.next().map(|end| &rest[..end])
+    }
+
+    /// Goes to the end tag of the element just opened, unless its content holds one of some texts, or its end cannot
+    /// be told without reading it. What is passed over is not checked: the preflight has done that.
+    pub fn pass_over(&mut self, name: &[u8], unless: &[&str]) {
+        let Some(content) = self.content(name) else { return };
+        if unless.iter().all(|text| memmem::find(content.as_bytes(), text.as_bytes()).is_none()) {
+            self.pass(content.len());
+        }
+    }
+
+    /// Goes on after so many bytes of content.
+    pub(crate) fn pass(&mut self, bytes: usize) {
+        self.unseen += bytes;
+        let next = self.position();
+        *self.reader.get_mut() = &self.text.as_bytes()[next..];
     }
 
     /// The next event, or none at the end of a well-formed part.
@@ -54,7 +98,7 @@ impl<'a> Scanner<'a> {
     pub fn next(&mut self) -> Result<Option<Token<'a>>> {
         let from = self.position();
         let event = self.reader.read_event().map_err(|e| {
-            bad_xml(&self.part, self.start as u64 + self.reader.error_position(), &e.to_string())
+            bad_xml(&self.part, self.unseen as u64 + self.reader.error_position(), &e.to_string())
         })?;
         self.shape.see(&self.part, from as u64, &event)?;
         let span = from..self.position();
@@ -68,7 +112,7 @@ impl<'a> Scanner<'a> {
 
     /// The byte after the last event.
     pub fn position(&self) -> usize {
-        self.start + self.reader.buffer_position() as usize
+        self.unseen + self.reader.buffer_position() as usize
     }
 
     /// The part's name.
@@ -279,6 +323,30 @@ mod tests {
             "\n",
         ];
         assert_eq!(spans, expected);
+    }
+
+    #[test]
+    fn elements_can_be_passed_over() {
+        let after = |xml: &str, unless: &[&str]| -> usize {
+            let mut scanner = Scanner::new("a.xml", xml.as_bytes()).unwrap();
+            let mut tags = 0;
+            while let Some(token) = scanner.next().unwrap() {
+                assert_eq!(&xml[token.span.clone()], &scanner.text()[token.span.clone()]);
+                tags += usize::from(matches!(token.event, Event::Start(_) | Event::Empty(_)));
+                if let Event::Start(tag) = &token.event
+                    && tag.local_name().as_ref() == b"row"
+                {
+                    scanner.pass_over(tag.name().as_ref(), unless);
+                }
+            }
+            tags
+        };
+        let xml =
+            "\u{FEFF}<?xml version='1.0'?><x:d><x:row><c/><f/></x:row ><x:row><c/></x:row><x:rows/></x:d>";
+        assert_eq!(after(xml, &[]), 4);
+        assert_eq!(after(xml, &["<f"]), 6);
+        assert_eq!(after("<d><row><c/><!-- </row> --></row></d>", &[]), 3);
+        assert_eq!(after("<d><row><c/><rows></rows></row></d>", &[]), 2);
     }
 
     #[test]

@@ -1,1 +1,93 @@
-//! `hence check`.
+//! `hence check`: what a workbook holds against what its basis gives.
+
+use crate::books::{Book, SHEET, plan, with};
+use crate::{code, run, stderr, stdout};
+use hence_workbook::package::Package;
+
+fn filled() -> Book {
+    let book = plan(&[]);
+    assert_eq!(code(&run(&["fill", book.arg()])), 0);
+    Book::of("plan.xlsx", std::fs::read(book.beside("plan.audited.xlsx")).unwrap())
+}
+
+fn changed(cells: &[(&str, &str)]) -> Book {
+    let filled = filled();
+    Book::of("plan.xlsx", with(&Package::open(&filled.path).unwrap(), SHEET, cells))
+}
+
+#[test]
+fn blank_targets_are_not_filled_and_no_difference() {
+    let book = plan(&[]);
+    let output = run(&["check", book.arg()]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    let text = stdout(&output);
+    assert!(text.contains("Appraisal!B28:BJ28 [hence_factor]: not filled"), "{text}");
+    assert!(text.contains("nothing was filled, so nothing was compared"), "{text}");
+    book.is_clean(&[]);
+}
+
+#[test]
+fn a_filled_workbook_agrees() {
+    let book = filled();
+    let output = run(&["check", book.arg()]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    // 61 factors, 61 present values, seven results.
+    assert!(stdout(&output).contains("all 129 filled cells agree"), "{}", stdout(&output));
+    book.is_clean(&[]);
+}
+
+#[test]
+fn a_difference_is_listed_with_its_cell() {
+    let book = changed(&[("C28", "0.97"), ("B34", "120")]);
+    let output = run(&["check", book.arg()]);
+    assert_eq!(code(&output), 1);
+    let text = stdout(&output);
+    for part in [
+        "Appraisal!C28 [hence_factor]",
+        "0.97",
+        "0.966183574879227",
+        "Appraisal!B34 [hence_npv]",
+        "2 cells differ",
+    ] {
+        assert!(text.contains(part), "{part} is missing from:\n{text}");
+    }
+    let document: serde_json::Value =
+        serde_json::from_str(&stdout(&run(&["check", book.arg(), "--json"]))).unwrap();
+    assert_eq!(document["schema"], 1);
+    let found = &document["books"][0];
+    assert_eq!((&found["status"], &found["agree"]), (&"problems".into(), &127.into()));
+    let factor = &found["differences"][0];
+    assert_eq!(
+        (&factor["place"], &factor["found"]),
+        (&"Appraisal!C28 [hence_factor]".into(), &"0.97".into())
+    );
+    assert!((factor["expected"].as_f64().unwrap() - 1.0 / 1.035).abs() < 1e-15);
+    assert!((factor["difference"].as_f64().unwrap() - (0.97 - 1.0 / 1.035)).abs() < 1e-15);
+    book.is_clean(&[]);
+}
+
+#[test]
+fn another_flow_or_rate_is_a_difference() {
+    assert_eq!(code(&run(&["check", changed(&[("C18", "601")]).arg()])), 1);
+    assert_eq!(code(&run(&["check", changed(&[("B4", "0.036")]).arg()])), 1);
+}
+
+#[test]
+fn text_and_blanks_among_the_targets() {
+    let text = changed(&[("B35", "about 1.1")]);
+    let output = run(&["check", text.arg()]);
+    assert_eq!(code(&output), 1);
+    assert!(stdout(&output).contains("about 1.1"), "{}", stdout(&output));
+}
+
+#[test]
+fn what_cannot_be_checked_says_why() {
+    let missing = run(&["check", "no-such.xlsx"]);
+    assert_eq!((code(&missing), stdout(&missing).len()), (2, 0));
+    let book = plan(&[("B4", "35")]);
+    let output = run(&["check", book.arg(), "--json"]);
+    assert_eq!(code(&output), 1);
+    let document: serde_json::Value = serde_json::from_str(&stdout(&output)).unwrap();
+    assert_eq!(document["books"][0]["status"], "failed");
+    assert!(stderr(&output).contains("Appraisal!B4 [hence_basis]"), "{}", stderr(&output));
+}

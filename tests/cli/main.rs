@@ -1,15 +1,21 @@
 //! The command line as a user meets it: a spawned program, its streams and its exit status.
 
+mod books;
 mod check;
 mod curve;
+mod errors;
 mod fill;
 mod help;
 mod names;
+mod outputs;
 mod readme;
 mod schedules;
+mod start;
+mod targets;
 
+use std::io::Write;
 use std::path::{Path, PathBuf};
-use std::process::{Command, Output};
+use std::process::{Command, Output, Stdio};
 
 /// The program, with nothing of the caller's environment that changes its words.
 pub fn hence() -> Command {
@@ -21,6 +27,19 @@ pub fn hence() -> Command {
 /// Runs it with these arguments.
 pub fn run(args: &[&str]) -> Output {
     hence().args(args).output().expect("the program starts")
+}
+
+/// Runs it with these arguments and bytes on standard input.
+pub fn run_with(args: &[&str], input: &[u8]) -> Output {
+    let mut child = hence()
+        .args(args)
+        .stdin(Stdio::piped())
+        .stdout(Stdio::piped())
+        .stderr(Stdio::piped())
+        .spawn()
+        .expect("the program starts");
+    child.stdin.take().expect("a pipe").write_all(input).expect("the program reads");
+    child.wait_with_output().expect("it ends")
 }
 
 /// What it printed on standard output.

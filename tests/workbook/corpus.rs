@@ -4,7 +4,7 @@
 //! on a sheet of its own with defined names, and in free rows of its first worksheet with roles from the command line.
 //! Each output is compared with the file as it came from the folder, entry by entry and cell by cell, by readers that
 //! are not hence's; validated against the schemas; and calculated anew by LibreOffice, whose numbers are compared with
-//! plain arithmetic done here.
+//! plain arithmetic done here. HENCE_KEEP_OUTPUTS names a folder for the outputs, to look at.
 
 mod appraisal;
 mod compare;

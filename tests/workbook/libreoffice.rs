@@ -3,48 +3,45 @@
 //! Workbooks are the samples and small ones made here. Without LibreOffice each test says that it did not run, and
 //! fails where HENCE_REQUIRE_TOOLS is set.
 
-mod books;
-mod cells;
+pub mod books;
+pub mod cells;
 mod office;
 
 use std::path::Path;
+use std::sync::OnceLock;
 
 use hence_core::Catalogue;
+use hence_workbook::check::check;
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::package::Package;
-use hence_workbook::patch::CellWrite;
+use hence_workbook::patch::{Cached, CellWrite};
 use hence_workbook::references::Cell;
 use hence_workbook::sheets::VERDICT_AGREES;
 
-use books::{CASES, Case, Labels, catalogue};
-use cells::{Cells, FileCell, Stored, cells, changed, verdict};
+use books::{CASES, Labels, catalogue};
+use cells::{Cells, FileCell, Stored, cells, changed, package, verdict};
 use office::{Recalculate, saved, soffice};
 
 /// The samples: as it was made, and as LibreOffice saved it.
 const SAMPLES: [&str; 2] = ["mine-drainage.xlsx", "mine-drainage-libreoffice.xlsx"];
+
+/// Two options over a baseline.
+const OPTIONS: &str = "options.xlsx";
 
 fn sample(name: &str) -> Vec<u8> {
     std::fs::read(Path::new(env!("CARGO_MANIFEST_DIR")).join("../../samples").join(name)).expect("the sample")
 }
 
 /// The workbook filled, its verdict agreeing; or what is wrong.
-fn try_filled(
-    name: &str,
-    bytes: &[u8],
-    request: &FillRequest,
-    catalogue: &Catalogue,
-) -> Result<Vec<u8>, String> {
+fn filled(name: &str, bytes: &[u8], catalogue: &Catalogue) -> Result<Vec<u8>, String> {
     let package = Package::from_bytes(name, bytes.to_vec()).map_err(|error| format!("{name}: {error}"))?;
-    let filled = fill(&package, request, catalogue).map_err(|error| format!("{name}: {error}"))?;
+    let filled =
+        fill(&package, &FillRequest::default(), catalogue).map_err(|error| format!("{name}: {error}"))?;
     let cell = verdict(&filled.bytes);
     if filled.report.verdict != VERDICT_AGREES || cell != VERDICT_AGREES {
         return Err(format!("{name}: the verdict is {:?}, in the cell {cell:?}", filled.report.verdict));
     }
     Ok(filled.bytes)
-}
-
-fn filled(name: &str, bytes: &[u8]) -> Vec<u8> {
-    try_filled(name, bytes, &FillRequest::default(), &catalogue()).unwrap_or_else(|wrong| panic!("{wrong}"))
 }
 
 /// Whether a column of differences stands there: tiny numbers, compared with what is allowed beside them.
@@ -83,38 +80,69 @@ fn compare(before: &Cells, after: &Cells) -> (usize, Vec<String>) {
     (compared, wrong)
 }
 
-/// Every appraisal of this file: name, workbook.
-fn appraisals() -> Vec<(String, Vec<u8>)> {
-    let mut books: Vec<(String, Vec<u8>)> =
-        SAMPLES.iter().map(|name| ((*name).to_owned(), sample(name))).collect();
-    books.push(("options.xlsx".into(), books::options().bytes()));
-    books.extend(CASES.iter().enumerate().map(|(i, case)| (format!("case{i:02}.xlsx"), case.book().bytes())));
-    books
+/// An appraisal of this file: its name, the workbook, and the filled workbook or what was wrong with it.
+struct Appraisal {
+    name: String,
+    input: Vec<u8>,
+    filled: Result<Vec<u8>, String>,
+}
+
+/// Every appraisal of this file, filled once for all tests.
+fn appraisals() -> &'static [Appraisal] {
+    static ALL: OnceLock<Vec<Appraisal>> = OnceLock::new();
+    ALL.get_or_init(|| {
+        let mut books: Vec<(String, Vec<u8>)> =
+            SAMPLES.iter().map(|name| ((*name).to_owned(), sample(name))).collect();
+        books.push((OPTIONS.into(), books::options().bytes()));
+        books.extend(CASES.iter().enumerate().map(|(i, case)| (case_name(i), case.book().bytes())));
+        let catalogue = catalogue();
+        books
+            .into_iter()
+            .map(|(name, input)| {
+                let filled = filled(&name, &input, &catalogue);
+                Appraisal { name, input, filled }
+            })
+            .collect()
+    })
+}
+
+fn case_name(i: usize) -> String {
+    format!("case{i:02}.xlsx")
+}
+
+/// The filled workbook of that name.
+fn output(name: &str) -> &'static [u8] {
+    let found = appraisals().iter().find(|appraisal| appraisal.name == name).expect("an appraisal");
+    found.filled.as_ref().unwrap_or_else(|wrong| panic!("{wrong}"))
+}
+
+/// What `hence check` says: differences, or the problems that keep it from valuing; nothing where all agrees.
+fn found(bytes: &[u8]) -> Vec<String> {
+    match check(&package(bytes), &[], &catalogue()) {
+        Ok(report) if report.agrees() => Vec::new(),
+        Ok(report) => report.differences.iter().map(|d| format!("{} {}", d.place, d.role)).collect(),
+        Err(error) => error.problems().iter().map(ToString::to_string).collect(),
+    }
 }
 
 #[test]
-fn libreoffice_recalculates_what_was_written() {
+fn every_result_is_recalculated_to_the_same() {
     let Some(soffice) = soffice() else { return };
-    let catalogue = catalogue();
-    let mut wrong = Vec::new();
-    let mut books = Vec::new();
-    for (name, bytes) in appraisals() {
-        match try_filled(&name, &bytes, &FillRequest::default(), &catalogue) {
-            Ok(bytes) => books.push((name, bytes)),
-            Err(error) => wrong.push(error),
-        }
-    }
-    for (n, b) in &books {
-        std::fs::write(format!("/tmp/out/{n}"), b).unwrap();
-    } // SCRATCH
+    let mut wrong: Vec<String> = appraisals().iter().filter_map(|a| a.filled.clone().err()).collect();
+    let mut books: Vec<(String, Vec<u8>)> =
+        appraisals().iter().filter_map(|a| Some((a.name.clone(), a.filled.clone().ok()?))).collect();
+    // A stored result that is wrong shows that LibreOffice did compute everything.
+    let control = changed(&books[0].1, CONTROL.0, &[(CONTROL.1, formula(CONTROL.2, 4711.0))]);
+    books.push(("control.xlsx".into(), control));
     let back = saved(&soffice, &books, Recalculate::All);
-    for (n, b) in &back {
-        std::fs::write(format!("/tmp/out/lo-{n}"), b).unwrap();
-    } // SCRATCH
     let mut compared = 0;
     for (name, bytes) in &books {
         let after = &back[name];
         let (count, differ) = compare(&cells(bytes), &cells(after));
+        if name == "control.xlsx" {
+            assert_eq!(differ.len(), 1, "the wrong result is found: {differ:?}");
+            continue;
+        }
         compared += count;
         if !differ.is_empty() {
             let shown = differ[..differ.len().min(6)].join("\n  ");
@@ -123,7 +151,186 @@ fn libreoffice_recalculates_what_was_written() {
         if verdict(after) != VERDICT_AGREES {
             wrong.push(format!("{name}: recalculated, the verdict is {:?}", verdict(after)));
         }
+        wrong.extend(found(after).into_iter().map(|found| format!("{name}: check finds {found}")));
     }
-    println!("{} workbooks, {compared} results of formulas recalculated", books.len());
+    println!("{} workbooks, {compared} results of formulas recalculated", books.len() - 1);
     assert!(wrong.is_empty(), "{}", wrong.join("\n"));
+}
+
+/// A formula of the sample that depends on no filled cell: sheet, cell, text.
+const CONTROL: (&str, &str, &str) = ("Do nothing", "B7", "SUM(D7:GU7)");
+
+fn formula(text: &str, result: f64) -> CellWrite {
+    CellWrite::Formula(text.to_owned(), Cached::Number(result))
+}
+
+/// A change that a person makes in a filled workbook.
+struct Turn {
+    book: String,
+    sheet: &'static str,
+    cell: String,
+    write: CellWrite,
+    check: Check,
+}
+
+/// Where `hence check`, which looks at stored results, finds the change too.
+#[derive(Clone, Copy, Debug, PartialEq)]
+enum Check {
+    /// In the workbook as LibreOffice computed it.
+    After,
+    /// Before only: live formulas follow a changed flow, and then agree with the basis again.
+    Before,
+    /// Nowhere: no value depends on it, or stored flows follow only when they are computed again.
+    Never,
+}
+
+fn turn(book: &str, sheet: &'static str, cell: &str, write: CellWrite) -> Turn {
+    Turn { book: book.to_owned(), sheet, cell: cell.to_owned(), write, check: Check::After }
+}
+
+/// One change of every kind.
+fn turns() -> Vec<Turn> {
+    let number = |book, sheet, cell, x| turn(book, sheet, cell, CellWrite::Number(x));
+    let text = |book, sheet, cell, text: &str| turn(book, sheet, cell, CellWrite::Text(text.to_owned()));
+    let before = |turn| Turn { check: Check::Before, ..turn };
+    let (whole, small) = (SAMPLES[0], case_name(0));
+    const WALL: &str = "The wall's end";
+    let mut turns = vec![
+        // The sample: a factor, a total, a flow, the base, a year, the growth that flows are made with.
+        number(whole, "Lime plant", "Z15", 0.4567),
+        number(whole, "Plug and divert", "B21", 1.0),
+        before(number(whole, "Settling ponds", "E6", 9e6)),
+        number(whole, "Inputs", "B3", 2027.0),
+        number(whole, "Do nothing", "M4", 2100.0),
+        number(whole, "Inputs", "B9", 0.02),
+        // Filled cells of every other kind.
+        text(&small, "Appraisal", "H18", "n/a"),
+        number(&small, "Appraisal", "H19", 1.0),
+        number(&small, "Appraisal", "H20", 1.0),
+        number(&small, "Appraisal", "H21", 0.04),
+        number(&small, "Appraisal", "E1", 1e6),
+        number(OPTIONS, WALL, "F6", 1.4),
+        number(OPTIONS, WALL, "F9", 1.4),
+        number(OPTIONS, WALL, "F10", 0.4),
+        number(OPTIONS, WALL, "F11", 40.0),
+        before(number(OPTIONS, "Do nothing", "C9", 1.0)),
+        before(number(&case_name(1), "Appraisal", &CASES[1].flow(1), 1.0)),
+        before(number(&case_name(2), "Appraisal", &CASES[2].flow(1), 1.0)),
+        // What the workbook states.
+        text(OPTIONS, "Inputs", "B2", "3.5%"),
+        text(OPTIONS, "Inputs", "B3", WALL),
+        before(number(OPTIONS, "Inputs", "B4", 70.0)),
+        text(OPTIONS, "Inputs", "B5", "for ever"),
+        text(&small, "Appraisal", "B3", "flows middle, base end"),
+        // hence's own sheet: a factor, a present value.
+        number(&small, "Discounting", "D30", 0.5),
+        number(OPTIONS, "Discounting", "K9", 12345.0),
+    ];
+    // Years and bases of every kind: once for each way they are written and laid out.
+    let mut seen = Vec::new();
+    for (i, case) in CASES.iter().enumerate() {
+        let kind = (case.labels, case.across);
+        if seen.contains(&kind) {
+            continue;
+        }
+        seen.push(kind);
+        let typed = |cell: &str, text: String| {
+            let write = match text.strip_prefix(['\'', '@']) {
+                Some(serial) if text.starts_with('@') => CellWrite::Number(serial.parse().expect("a day")),
+                Some(text) => CellWrite::Text(text.to_owned()),
+                None => CellWrite::Number(text.parse().expect("a number")),
+            };
+            turn(&case_name(i), "Appraisal", cell, write)
+        };
+        // The label of a year far beyond stands in the seventh place; the base is the third year.
+        turns.push(typed(&case.label(6), case.written(46)));
+        turns.push(match case.labels {
+            // These count from the base, whatever it is.
+            Labels::Numbers | Labels::Offsets if !case.basis.contains("2040") => {
+                Turn { check: Check::Never, ..typed("B1", "2028".into()) }
+            }
+            _ => typed("B1", case.written(2 + case.past)),
+        });
+    }
+    let settings = CASES.iter().position(|case| case.settings).expect("a case with settings");
+    for (cell, write, check) in [
+        ("B4", CellWrite::Text("costs positive".into()), Check::After),
+        ("B5", CellWrite::Text("m".into()), Check::After),
+        ("B6", CellWrite::Number(0.2), Check::Before),
+        ("B7", CellWrite::Number(0.0), Check::Before),
+        ("B8", CellWrite::Text("to 61".into()), Check::After),
+    ] {
+        turns.push(Turn { check, ..turn(&case_name(settings), "Appraisal", cell, write) });
+    }
+    turns
+}
+
+#[test]
+fn the_verdict_turns_when_a_cell_is_changed() {
+    let Some(soffice) = soffice() else { return };
+    let turns = turns();
+    let edited: Vec<(String, Vec<u8>)> = turns
+        .iter()
+        .enumerate()
+        .map(|(i, turn)| {
+            let writes = [(turn.cell.as_str(), turn.write.clone())];
+            (format!("turn{i:02}.xlsx"), changed(output(&turn.book), turn.sheet, &writes))
+        })
+        .collect();
+    let back = saved(&soffice, &edited, Recalculate::All);
+    let mut wrong = Vec::new();
+    for (turn, (name, before)) in turns.iter().zip(&edited) {
+        let after = &back[name];
+        let what = format!("{} {}!{} {:?}", turn.book, turn.sheet, turn.cell, turn.write);
+        if !verdict(after).starts_with("differs: ") {
+            wrong.push(format!("{what}: the verdict is still {:?}", verdict(after)));
+        }
+        let found = found(if turn.check == Check::Before { before } else { after });
+        if found.is_empty() != (turn.check == Check::Never) {
+            wrong.push(format!("{what}: check finds {found:?}"));
+        }
+    }
+    println!("{} changes", turns.len());
+    assert!(wrong.is_empty(), "{}", wrong.join("\n"));
+}
+
+#[test]
+fn nothing_stale_is_left_to_read() {
+    let Some(soffice) = soffice() else { return };
+    let whole = output(SAMPLES[0]);
+    let before = cells(whole);
+    // The summary's formulas over filled cells, one step away (B5:D8) and two (the ranks, E5:E8).
+    for (row, col) in (4..8).flat_map(|row| (1..5).map(move |col| (row, col))) {
+        let cell = &before[&("Summary".to_owned(), Cell { row, col })];
+        assert_eq!(*cell, FileCell { formula: true, value: Stored::Nothing });
+    }
+    let lost: Vec<&(String, Cell)> = before
+        .iter()
+        .filter(|((sheet, _), cell)| cell.formula && cell.value == Stored::Nothing && sheet != "Summary")
+        .map(|(place, _)| place)
+        .collect();
+    assert_eq!(
+        lost,
+        Vec::<&(String, Cell)>::new(),
+        "formulas that depend on no filled cell keep their results"
+    );
+    // What is read without computing all anew is what computing all anew gives.
+    let names = [SAMPLES[0], OPTIONS, "case00.xlsx", "case02.xlsx"];
+    let mut books: Vec<(String, Vec<u8>)> =
+        names.iter().map(|name| ((*name).to_owned(), output(name).to_vec())).collect();
+    let stale = changed(whole, "Summary", &[("B6", formula("'Settling ponds'!$B$20", 4711.0))]);
+    books.push(("stale.xlsx".into(), stale));
+    let opened = saved(&soffice, &books, Recalculate::Missing);
+    let computed = saved(&soffice, &books, Recalculate::All);
+    for (name, _) in &books {
+        let (shown, right) = (cells(&opened[name]), cells(&computed[name]));
+        let (count, differ) = compare(&shown, &right);
+        if name == "stale.xlsx" {
+            assert!(!differ.is_empty(), "a stale result that is left would be read");
+            continue;
+        }
+        let formulas = right.values().filter(|cell| cell.formula).count();
+        assert_eq!(count, formulas, "{name}: every formula has a result");
+        assert_eq!(differ, Vec::<String>::new(), "{name}");
+    }
 }

@@ -85,8 +85,9 @@ fn years_may_run_down_a_column() {
     assert_eq!(read.axes[0].direction, Direction::Down);
     assert_eq!(read.choices[0].streams[0].raw, [1.0, 2.0, 3.0]);
     assert_eq!(read.choices[0].basis.value, "0.035");
-    assert_eq!(read.coverage.len(), 1);
-    assert_eq!((read.coverage[0].heading.as_str(), read.coverage[0].total), ("Works", 6.0));
+    // The factors are still blank.
+    let rows: Vec<_> = read.coverage.iter().map(|row| (row.heading.as_str(), row.total)).collect();
+    assert_eq!(rows, [("Works", 6.0), ("", 0.0)]);
 }
 
 #[test]
@@ -359,7 +360,16 @@ fn faults_of_blocks() {
     };
     assert_eq!(block("", "B5:D6"), ["block-shape Plan!B5:D6 [hence_costs]"]);
     assert_eq!(block("A6: 'Works | 1 | 2 | 3", "A5:D6"), ["block-label Plan!B6:D6 [Works]"]);
-    assert_eq!(block("A5: 'Works\nA6: 'Pumps", "A5:D6"), ["block-empty Plan!A5:D6 [hence_costs]"]);
+    assert_eq!(
+        block("A5: 'Works\nA6: 'Pumps", "A5:D6"),
+        ["block-empty Plan!A5:D6 [hence_costs]", "no-flows Plan!A5:D6 [hence_costs]"]
+    );
+    let beside = named("A6: 'Pumps", "hence_benefit_access, hence_costs A6:D6");
+    assert_eq!(
+        beside.problems(),
+        ["block-empty Plan!A6:D6 [hence_costs]"],
+        "a warning where other flows are entered"
+    );
     assert_eq!(block("", "A4:D5"), [""; 0], "the years may head the block");
     assert_eq!(block("A6: | 1 | 2 | 3", "A5:D6"), ["block-label Plan!A6 [hence_costs]"]);
     assert_eq!(block("A6: 'Pumps | 1 | 'x | 3", "A5:D6"), ["text-value Plan!C6 [Pumps]"]);
@@ -435,6 +445,8 @@ fn coverage_lists_every_numeric_row_with_its_role_or_none() {
         [
             ("Works", "cost: works".to_owned(), 175.0, "B5:D5".to_owned()),
             ("Access", "benefit: access".to_owned(), 170.0, "B6:D6".to_owned()),
+            // Still blank: a fill writes numbers here.
+            ("Factor", "factor".to_owned(), 0.0, "B7:D7".to_owned()),
             ("Fees", String::new(), 5.0, "B10:D10".to_owned()),
             ("Noise", String::new(), 8.0, "B12:D12".to_owned()),
         ]

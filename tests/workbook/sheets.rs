@@ -144,7 +144,6 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
         problems: &appraisal.problems,
         carried,
         differs: &differs,
-        touched: &Touched::new(),
     };
     let composed = compose(&input, &layout);
     Audit { appraisal, outcomes, layout, composed }
@@ -431,7 +430,8 @@ fn notes_of_a_person_are_put_back_outside_of_what_is_marked_as_own() {
     let note = |row, col, text: &str| Carried {
         sheet: "Audit summary".into(),
         cell: Cell { row, col },
-        text: text.into(),
+        content: Content::Text(text.into()),
+        style: Style::Text,
     };
     let audit = audit_of(a, o, &[note(500, 0, "seen, JB"), note(4, 3, "in the way")]);
     let summary = &audit.composed.sheets[1];

@@ -233,8 +233,8 @@ fn cells_outside_the_sheet_are_refused() {
     for data in [
         "<row r=\"1048577\"><c><f>1</f></c></row>",
         "<row r=\"0\"/>",
-        "<row r=\"1\"><c r=\"XFE1\"/></row>",
-        "<row r=\"1\"><c r=\"XFD1\"/><c/></row>",
+        "<row r=\"1\"><c r=\"XFE1\"><f>1</f></c></row>",
+        "<row r=\"1\"><c r=\"XFD1\"/><c><f>1</f></c></row>",
         "<row r=\"1048576\"/><row/>",
         "<row r=\"1\"><c r=\"A1\"><f t=\"array\" ref=\"A1:A9999999\">1</f></c></row>",
     ] {

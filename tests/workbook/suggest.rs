@@ -89,6 +89,29 @@ fn signs_and_sections_speak_where_headings_do_not() {
 }
 
 #[test]
+fn units_are_no_headings_and_totals_tell_the_side() {
+    let small = Small::default().sheet(
+        "Plan",
+        "A1: 'Crowns | 'Unit | 2025 | 2026 | 2027 | 2028
+         A2: 'Watching the outflow | 'crowns | 1 | 1 | 1 | 1
+         A3: 'Renewals | 'crowns | 0 | 0 | 0 | 9
+         A4: 'All costs | 'crowns | =SUM(C2:C3)>1 | =SUM(D2:D3)>1 | =SUM(E2:E3)>1 | =SUM(F2:F3)>10
+         A5: 'Clean water sold | 'crowns | 0 | 3 | 3 | 3
+         A6: 'Net | 'crowns | =C5-C4>-1 | =D5-D4>2 | =E5-E4>2 | =F5-F4>-7",
+    );
+    assert_eq!(
+        listed(&small),
+        [
+            "hence_years Plan!C1:F1",
+            "hence_cost_watching_the_outflow Plan!C2:F2",
+            "hence_cost_renewals Plan!C3:F3",
+            "hence_benefit_clean_water_sold Plan!C5:F5"
+        ]
+    );
+    assert!(guesses(&small)[1].why.contains("added up in `All costs`"), "{}", guesses(&small)[1].why);
+}
+
+#[test]
 fn years_down_a_column() {
     let small = Small::default().sheet(
         "Plan",

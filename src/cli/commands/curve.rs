@@ -31,11 +31,12 @@ pub fn run(args: &Curve, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
         let forward = if t > 0.0 { curve.forward_rate(t).ok() } else { None };
         rows.push(Row { t, factor, forward, mean: curve.mean_rate(t).ok() });
     }
-    for warning in basis.warnings() {
+    let warnings: Vec<String> = basis.warnings().into_iter().chain(curve.warnings()).collect();
+    for warning in &warnings {
         terminal.say("warning", &format!("{}: {warning}", basis.canonical()));
     }
     let text = if args.json {
-        json(&basis, &rows)
+        json(&basis, &warnings, &rows)
     } else if args.csv {
         csv(&rows)
     } else {
@@ -59,7 +60,7 @@ fn csv(rows: &[Row]) -> String {
     text
 }
 
-fn json(basis: &Basis, rows: &[Row]) -> String {
+fn json(basis: &Basis, warnings: &[String], rows: &[Row]) -> String {
     let rows: Vec<_> = rows
         .iter()
         .map(|row| {
@@ -69,7 +70,7 @@ fn json(basis: &Basis, rows: &[Row]) -> String {
         })
         .collect();
     let document = serde_json::json!({
-        "schema": 1, "basis": basis.canonical(), "words": basis.words(), "warnings": basis.warnings(), "rows": rows
+        "schema": 1, "basis": basis.canonical(), "words": basis.words(), "warnings": warnings, "rows": rows
     });
     format!("{document:#}\n")
 }

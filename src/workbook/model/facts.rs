@@ -6,7 +6,7 @@ use super::{CellCursor, FormulaKind, FormulaTag, Table, Workbook, text_of};
 use crate::package::Package;
 use crate::problem::Result;
 use crate::references::{Cell, NameTarget, Range};
-use crate::xml::{Scanner, attribute};
+use crate::xml::{FORMULA_MARKS, Scanner, attribute};
 
 /// What decides whether cells of a sheet may be filled, and what to warn of.
 #[derive(Clone, Debug, Default, PartialEq)]
@@ -147,6 +147,9 @@ impl SheetFacts {
                             let row = cursor.row(part, tag)?;
                             if on(part, tag, "hidden")? {
                                 add_run(&mut facts.hidden_rows, row, row);
+                            }
+                            if opened {
+                                scanner.pass_over(tag.name().as_ref(), FORMULA_MARKS);
                             }
                         }
                         (true, 4, b"c") => cell = cursor.cell(part, tag)?,

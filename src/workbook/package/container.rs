@@ -48,6 +48,11 @@ impl Entry {
         self.size
     }
 
+    /// All that decides what it inflates to.
+    pub(super) fn packed_as<'a>(&self, file: &'a [u8]) -> (u16, u32, u64, &'a [u8]) {
+        (self.method, self.crc, self.size, &file[self.data.clone()])
+    }
+
     /// A reader of its inflated bytes, which stops with an error after the stated size.
     pub(super) fn reader<'a>(&self, file: &'a [u8]) -> Result<Inflated<'a>> {
         let data = &file[self.data.clone()];
@@ -66,7 +71,11 @@ impl Entry {
 
     /// All its bytes.
     pub(super) fn read(&self, file: &[u8]) -> Result<Vec<u8>> {
-        let mut bytes = Vec::with_capacity(self.size.min(4 * self.data.len() as u64) as usize);
+        // Space for what the directory states, which the limits bound; pages are taken only as they are filled.
+        let mut bytes = Vec::new();
+        bytes
+            .try_reserve_exact(self.size as usize)
+            .map_err(|e| self.unreadable(&std::io::Error::other(e)))?;
         self.reader(file)?.read_to_end(&mut bytes).map_err(|e| self.unreadable(&e))?;
         Ok(bytes)
     }

@@ -9,7 +9,7 @@ use flate2::write::DeflateEncoder;
 
 use super::container::moved_record;
 use super::{Package, key};
-use crate::problem::{Place, Problem, Result};
+use crate::problem::{Place, Problem, Result, WorkbookError};
 
 /// What is to become of a package's parts. Names are matched without regard to case.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
@@ -21,6 +21,19 @@ pub struct Changes {
     /// Parts to leave out.
     pub remove: BTreeSet<String>,
 }
+
+impl Changes {
+    /// Lets go of the new bytes, which may be many; the names of what changes stay.
+    pub fn forget_contents(&mut self) {
+        self.replace
+            .values_mut()
+            .chain(self.add.iter_mut().map(|(_, bytes)| bytes))
+            .for_each(|bytes| *bytes = Vec::new());
+    }
+}
+
+/// How hard new entries are packed: a sheet of a million cells takes half the time of the usual 6, and a tenth more room.
+const COMPRESSION: Compression = Compression::new(4);
 
 /// Day and time of entries that are written: the first that the format knows, so that the same input
 /// gives the same bytes.
@@ -103,7 +116,7 @@ impl Zip {
     /// A new entry, deflated.
     fn add(&mut self, name: &str, content: &[u8]) -> Result<()> {
         let offset = self.offset()?;
-        let mut encoder = DeflateEncoder::new(Vec::new(), Compression::default());
+        let mut encoder = DeflateEncoder::new(Vec::new(), COMPRESSION);
         let packed = encoder.write_all(content).and_then(|()| encoder.finish()).map_err(|e| too_large(&e))?;
         let mut crc = flate2::Crc::new();
         crc.update(content);
@@ -154,33 +167,44 @@ fn small(length: usize) -> Result<u32> {
     u32::try_from(length).map_err(|e| too_large(&e))
 }
 
-fn too_large(error: &dyn std::fmt::Display) -> crate::problem::WorkbookError {
+fn too_large(error: &dyn std::fmt::Display) -> WorkbookError {
     Problem::error("output-too-large", Place::default(), format!("the output cannot be packed: {error}"))
+        .into()
+}
+
+/// Whether a file may be written at a place: nothing is there, or an ordinary file and `force`; its folder is there.
+///
+/// **Errors**: `output-exists`, `cannot-write`.
+pub fn may_write(path: &Path, force: bool) -> Result<()> {
+    match path.metadata() {
+        Ok(there) if there.is_dir() => Err(cannot_write(path, "it is a folder")),
+        // A device or a pipe would be replaced by a file, which is never what was meant.
+        Ok(there) if !there.is_file() => Err(cannot_write(path, "it is no ordinary file")),
+        // A link that leads nowhere is there too.
+        _ if !force && path.symlink_metadata().is_ok() => Err(exists(path)),
+        _ if !folder_of(path).is_dir() => Err(cannot_write(path, "its folder is not there")),
+        _ => Ok(()),
+    }
+}
+
+fn cannot_write(path: &Path, why: impl std::fmt::Display) -> WorkbookError {
+    let message = format!("{} cannot be written: {why}", path.display());
+    Problem::error("cannot-write", Place::default(), message).hint("choose another place with --out").into()
+}
+
+fn exists(path: &Path) -> WorkbookError {
+    Problem::error("output-exists", Place::default(), format!("{} exists already", path.display()))
+        .hint("--force replaces it, --out writes elsewhere")
         .into()
 }
 
 /// Writes a file whole or not at all: a temporary file beside it, flushed to the disk, then renamed.
 ///
-/// **Arguments**: `force` replaces a file that is there.
+/// **Arguments**: `force` replaces a file that is there; of a link, the link, not the file it leads to.
 /// **Errors**: `output-exists`, `cannot-write`; no temporary file is left behind.
 pub fn write_atomically(path: &Path, bytes: &[u8], force: bool) -> Result<()> {
-    let shown = path.display();
-    let failed = |e: std::io::Error| -> crate::problem::WorkbookError {
-        Problem::error("cannot-write", Place::default(), format!("{shown} cannot be written: {e}"))
-            .hint("choose another place with --out")
-            .into()
-    };
-    let exists = || -> crate::problem::WorkbookError {
-        Problem::error("output-exists", Place::default(), format!("{shown} exists already"))
-            .hint("--force replaces it, --out writes elsewhere")
-            .into()
-    };
-    if !force && path.symlink_metadata().is_ok() {
-        return Err(exists());
-    }
-    if path.is_dir() {
-        return Err(failed(std::io::Error::other("it is a folder")));
-    }
+    may_write(path, force)?;
+    let failed = |e: std::io::Error| cannot_write(path, e);
     let folder = folder_of(path);
     let mut builder = tempfile::Builder::new();
     builder.prefix(".hence-").suffix(".tmp");
@@ -195,7 +219,7 @@ pub fn write_atomically(path: &Path, bytes: &[u8], force: bool) -> Result<()> {
     file.as_file().sync_all().map_err(failed)?;
     let renamed = if force { file.persist(path) } else { file.persist_noclobber(path) };
     match renamed {
-        Err(e) if e.error.kind() == std::io::ErrorKind::AlreadyExists => return Err(exists()),
+        Err(e) if e.error.kind() == std::io::ErrorKind::AlreadyExists => return Err(exists(path)),
         Err(e) => return Err(failed(e.error)),
         Ok(_) => {}
     }

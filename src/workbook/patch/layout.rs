@@ -8,6 +8,7 @@ use super::{CellWrite, problem};
 use crate::problem::{Problem, Result};
 use crate::references::{Cell, MAX_COLUMNS, MAX_ROWS, Range, shift};
 use crate::splice::{Kind, Token, Tokens, attribute, bad_xml, local, prefix};
+use crate::xml::FORMULA_MARKS;
 
 /// More text than this added by handing a shared formula on is refused.
 const MAX_HANDED_ON: usize = 64 << 20;
@@ -147,9 +148,10 @@ struct Pass<'a, 'w> {
 
 impl<'a, 'w> Pass<'a, 'w> {
     fn new(xml: &'a [u8], writes: &'w BTreeMap<Cell, CellWrite>) -> Result<Self> {
+        let tokens = Tokens::new(xml)?;
         Ok(Pass {
-            tokens: Tokens::new(xml)?,
-            text: std::str::from_utf8(xml).unwrap_or_default(),
+            text: tokens.text(),
+            tokens,
             writes,
             layout: Layout {
                 prefix: "",
@@ -288,6 +290,8 @@ impl<'a, 'w> Pass<'a, 'w> {
             let style = attribute(token.raw, "s")?.filter(|_| custom).map(Cow::into_owned);
             let (tag, start) = (token.raw, token.start);
             self.open_row = Some(Row { tag, start, end: None, style, cells: Vec::new() });
+        } else if token.kind == Kind::Open {
+            self.tokens.pass_over(token.name(), FORMULA_MARKS);
         }
         Ok(())
     }

@@ -6,7 +6,7 @@ use quick_xml::events::Event;
 
 use crate::model::{CellCursor, FormulaKind, FormulaTag, text_of};
 use crate::problem::Result;
-use crate::references::Cell;
+use crate::references::{Cell, Range};
 use crate::xml::{Scanner, attribute};
 
 /// One stored cell.
@@ -38,8 +38,10 @@ pub(super) struct Scan {
     pub masters: BTreeMap<u32, (Cell, String)>,
 }
 
-/// Reads a sheet part once and keeps the cells that are wanted.
-pub(super) fn scan(part: &str, xml: &[u8], wanted: impl Fn(Cell) -> bool) -> Result<Scan> {
+/// Reads a sheet part once and keeps the cells of some ranges.
+pub(super) fn scan(part: &str, xml: &[u8], ranges: &[Range]) -> Result<Scan> {
+    let wanted = |cell: Cell| ranges.iter().any(|range| range.contains(cell));
+    let row_wanted = |row: u32| ranges.iter().any(|range| (range.first.row..=range.last.row).contains(&row));
     let mut found = Scan::default();
     let mut scanner = Scanner::new(part, xml)?;
     let mut cursor = CellCursor::default();
@@ -52,7 +54,10 @@ pub(super) fn scan(part: &str, xml: &[u8], wanted: impl Fn(Cell) -> bool) -> Res
                 let empty = matches!(token.event, Event::Empty(_));
                 match tag.local_name().as_ref() {
                     b"row" => {
-                        cursor.row(part, tag)?;
+                        let row = cursor.row(part, tag)?;
+                        if !empty && !row_wanted(row) {
+                            scanner.pass_over(tag.name().as_ref(), &["shared"]);
+                        }
                     }
                     b"c" => {
                         let at = cursor.cell(part, tag)?;
@@ -133,7 +138,7 @@ mod tests {
             <c r="D2"><f t="shared" si="0"/><v>&#56;</v></c></row>
             <row><c><f t="array" ref="A3:B3">TRANSPOSE(A1:A2)</f><v>1<!-- -->2</v></c></row>
             </sheetData></worksheet>"#;
-        let found = scan("sheet1.xml", xml, |_| true).unwrap();
+        let found = scan("sheet1.xml", xml, &["A1:D9".parse().unwrap()]).unwrap();
         let raw = |a1: &str| &found.cells[&a1.parse::<Cell>().unwrap()];
         assert!(matches!(&raw("B2").formula, Some(RawFormula::Text(text)) if text == "A2&\"x\""));
         assert_eq!(raw("C2").value.as_deref(), Some("7"));

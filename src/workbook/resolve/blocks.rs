@@ -79,8 +79,8 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
     }
     if streams.is_empty() && !context.failed() {
         context.report(
-            Problem::error("block-empty", named.place(), "holds no stream")
-                .hint("let the block cover the labels and the numbers of its streams"),
+            Problem::warning("block-empty", named.place(), "holds no numbers and counts for nothing")
+                .hint("enter the flows, or let the block cover the labels and the numbers of its streams"),
         );
     }
     streams

@@ -4,6 +4,7 @@ use std::collections::BTreeMap;
 
 use crate::appraisal::{Axis, Choice, Stream, StreamKind};
 use crate::problem::{Place, Problem};
+use crate::reading::Value;
 use crate::references::SheetRange;
 use crate::roles::{ROLES, Role, key};
 
@@ -46,6 +47,7 @@ pub(super) fn build(context: &mut Context, split: &Split, told: Option<&str>) ->
         targets::add_shared(context, split, &mut built.choices, &built.axes);
         check_settings(context, split, &built.choices);
         built.baseline = baseline(context, split);
+        check_flows(context, split, &built.choices);
     }
     targets::check(context, &built.choices, &built.axes);
     built
@@ -154,7 +156,7 @@ fn report_missing(context: &mut Context, split: &Split, told: Option<&str>) {
 fn needs_base(context: &mut Context, years: &Named) -> bool {
     let first =
         context.grid(&years.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()));
-    !matches!(first, Some(crate::reading::Value::Number(n)) if n < 1000.0)
+    !matches!(first, Some(Value::Number(n)) if n < 1000.0)
 }
 
 /// Roles that are missing, and the names that would say them.
@@ -217,6 +219,30 @@ fn has_cost(split: &Split, text: &str) -> bool {
     split.groups.iter().flat_map(|group| &group.named).chain(&split.shared).any(|named| {
         named.name.role == Role::Cost && named.name.stream.as_deref().map(key) == Some(key(text))
     })
+}
+
+/// Where every flow of every option is blank, nothing has been entered yet.
+fn check_flows(context: &mut Context, split: &Split, choices: &[Choice]) {
+    let streams = || choices.iter().flat_map(|choice| &choice.streams);
+    let entered = streams().any(|stream| {
+        stream.residual.is_some()
+            || context.grid(&stream.at).is_some_and(|grid| {
+                grid.iter().any(|(_, cell)| cell.value != Value::Blank || cell.formula.is_some())
+            })
+    });
+    if entered || context.failed() {
+        return;
+    }
+    let mut all = split.groups.iter().flat_map(|group| &group.named).chain(&split.shared);
+    let place = all.find(|named| named.name.role.is_stream()).map_or_else(Place::default, Named::place);
+    context.report(
+        Problem::error(
+            "no-flows",
+            place,
+            "every cell of every stream is blank: there is nothing to value yet",
+        )
+        .hint("enter the flows, one amount a year, and save the workbook"),
+    );
 }
 
 /// The names of an option's streams in one phrase.

@@ -42,13 +42,18 @@ struct Line {
 /// Every numeric row along the years of every option, in sheet order.
 pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
     let roles = roles(built);
+    let targets: Vec<SheetRange> =
+        built.choices.iter().flat_map(|choice| &choice.targets).map(|target| target.at.clone()).collect();
     let mut covered = Vec::new();
     let order: Vec<String> = context.book.sheets.iter().map(|sheet| sheet.name.clone()).collect();
     let bands = bands(built);
     for sheet in order {
         let Some(bands) = bands.get(&sheet) else { continue };
         for band in bands {
-            let lines = match lines(context, &sheet, *band) {
+            let named = |index: u32| {
+                roles.contains_key(&SheetRange { sheet: sheet.clone(), range: band.line(index) })
+            };
+            let lines = match lines(context, &sheet, *band, &targets, named) {
                 Ok(lines) => lines,
                 Err(error) => {
                     context.problems.extend(error.problems().iter().cloned());
@@ -65,6 +70,7 @@ pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
                     heading: line.heading,
                     roles,
                     total: sum(&line.numbers),
+                    follows: false,
                 })
             }));
         }
@@ -139,8 +145,17 @@ fn bands(built: &Built) -> BTreeMap<String, Vec<Band>> {
     bands
 }
 
-/// Streams the sheet once and sums each row of the band.
-fn lines(context: &mut Context, sheet: &str, band: Band) -> crate::problem::Result<BTreeMap<u32, Line>> {
+/// Streams the sheet once and sums each row of the band. Cells that are filled are left out, whatever they hold before,
+/// and rows that have a name are kept, so that a second fill lists what the first did.
+fn lines(
+    context: &mut Context,
+    sheet: &str,
+    band: Band,
+    targets: &[SheetRange],
+    named: impl Fn(u32) -> bool,
+) -> crate::problem::Result<BTreeMap<u32, Line>> {
+    let targets: Vec<Range> = targets.iter().filter(|at| at.sheet == sheet).map(|at| at.range).collect();
+    let filled = |cell: Cell| targets.iter().any(|range| range.contains(cell));
     let mut lines: BTreeMap<u32, Line> = BTreeMap::new();
     context.sheets.visit(sheet, |cell, value| {
         let (index, across) = band.turned(cell);
@@ -148,7 +163,9 @@ fn lines(context: &mut Context, sheet: &str, band: Band) -> crate::problem::Resu
             return;
         }
         match value {
-            Value::Number(number) if number.is_finite() && (band.first..=band.last).contains(&across) => {
+            Value::Number(number)
+                if number.is_finite() && (band.first..=band.last).contains(&across) && !filled(cell) =>
+            {
                 let line = lines.entry(index).or_default();
                 line.numbers.push(number);
             }
@@ -164,7 +181,7 @@ fn lines(context: &mut Context, sheet: &str, band: Band) -> crate::problem::Resu
             _ => {}
         }
     })?;
-    lines.retain(|_, line| !line.numbers.is_empty());
+    lines.retain(|&index, line| !line.numbers.is_empty() || named(index));
     Ok(lines)
 }
 

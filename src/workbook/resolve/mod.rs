@@ -26,7 +26,6 @@ use crate::references::{Cell, Range, SheetRange};
 
 pub(crate) use counted::sum_of;
 pub use report::{Found, NamesReport, names};
-pub(crate) use targets::inputs;
 
 /// What the run was told besides the workbook.
 #[derive(Clone, Copy, Debug, Default)]

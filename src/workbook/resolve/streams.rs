@@ -89,14 +89,16 @@ fn row(context: &mut Context, named: &Named, axis: &Axis) -> Option<Vec<f64>> {
             Problem::warning("stream-blank", named.place(), "is blank in every year and counts as 0")
                 .hint("enter the flows, or check what the name refers to"),
         );
-    } else {
-        for cell in read.blanks {
-            context.report(note(
-                "blank-zero",
-                place(&named.at, cell, &named.from),
-                "is blank and counts as 0",
-            ));
-        }
+    } else if !read.blanks.is_empty() {
+        let verbs = if read.blanks.len() == 1 { ("is", "counts") } else { ("are", "count") };
+        let message = format!(
+            "{} of {} cells {} blank and {} as 0",
+            read.blanks.len(),
+            read.values.len(),
+            verbs.0,
+            verbs.1
+        );
+        context.report(note("blank-zero", named.place(), message));
     }
     Some(read.values)
 }

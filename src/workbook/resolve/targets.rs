@@ -195,7 +195,7 @@ pub(super) fn check(context: &mut Context, choices: &[Choice], axes: &[Axis]) {
 }
 
 /// Every range that is read.
-pub(crate) fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(SheetRange, String)> {
+fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(SheetRange, String)> {
     let mut inputs: Vec<(SheetRange, String)> =
         axes.iter().map(|axis| (axis.at.clone(), "the years".to_owned())).collect();
     for choice in choices {

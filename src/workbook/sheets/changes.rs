@@ -20,10 +20,23 @@ pub(super) fn sheet(input: &AuditInput<'_>) -> Sheet {
         sheet.columns(i as u32, i as u32, width);
     }
     sheet.text(0, 0, Style::Title, "Audit changes");
+    let cells = |n: usize| if n == 1 { "one cell".to_owned() } else { format!("{n} cells") };
+    let new = input.changes.iter().filter(|change| change.before != change.after).count();
     let words = match input.changes.len() {
-        0 => "This fill changed no cell of the workbook.".to_owned(),
-        1 => "This fill changed one cell of the workbook; every other cell is as it was.".to_owned(),
-        n => format!("This fill changed {n} cells of the workbook; every other cell is as it was."),
+        0 => "This fill wrote no cell of the workbook.".to_owned(),
+        n if n == new => {
+            format!("This fill wrote {}; every other cell of the workbook is as it was.", cells(n))
+        }
+        n => format!(
+            "This fill wrote {}, and {} now another text or number than before; every other cell of the workbook is \
+             as it was.",
+            cells(n),
+            match new {
+                0 => "none holds".to_owned(),
+                1 => "one holds".to_owned(),
+                new => format!("{new} hold"),
+            }
+        ),
     };
     sheet.paragraph(1, 0, 4, Style::Wrapped, words);
     for (i, heading) in ["Sheet", "Cell", "Role", "Before", "After"].iter().enumerate() {

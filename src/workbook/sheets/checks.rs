@@ -8,7 +8,7 @@ use crate::formulas::{absolute, nth, refer, refer_cell, residual, residual_sign,
 use crate::layout::{Column, LabelValue, Layout, label_value};
 use crate::patch::Cached;
 use crate::references::{Cell, Range, SheetRange, quote_sheet};
-use crate::writer::{Sheet, Style};
+use crate::writer::{MAX_FORMULA, Sheet, Style};
 
 /// The row of column headings.
 const HEADING: u32 = 3;
@@ -279,7 +279,13 @@ impl<'a> Maker<'a> {
             let last = rebuilt.factor(stream.raw.len().checked_sub(1)?)?;
             total += residual_sign(stream.kind) * stream.unit * given.value * last;
         }
-        Some(total + self.input.outcomes[c].streams[s].pv_tail)
+        let tail = match (&stream.tail, self.rebuilt_tail(c, s)) {
+            (None, _) => 0.0,
+            (Some(_), Some((_, value))) => value,
+            // No second route: its line says so.
+            (Some(_), None) => self.input.outcomes[c].streams[s].pv_tail,
+        };
+        Some(total + tail)
     }
 
     fn stream(&self, c: usize, s: usize) -> Line {
@@ -287,9 +293,13 @@ impl<'a> Maker<'a> {
         let outcome = &self.input.outcomes[c].streams[s];
         let at = self.sections[c];
         let row = self.layout.rows[c].streams[s];
-        let what = match stream.tail {
-            None => format!("PV: {}", stream.name),
-            Some(_) => format!("PV: {} (after the last year: a constant)", stream.name),
+        let tail = self.rebuilt_tail(c, s);
+        let what = match (&stream.tail, &tail) {
+            (None, _) => format!("PV: {}", stream.name),
+            (Some(_), Some(_)) => format!("PV: {} (with what follows the last year)", stream.name),
+            (Some(_), None) => {
+                format!("PV: {} (what follows the last year is not independently checked)", stream.name)
+            }
         };
         let gross: f64 = outcome.pv_by_year.iter().map(|x| x.abs()).sum::<f64>() + outcome.pv_tail.abs();
         let now = Live::number(table_ref(self.home, self.layout, row, Column::Value), outcome.pv);
@@ -305,10 +315,12 @@ impl<'a> Maker<'a> {
             if let Some(residual) = residual(stream, self.home) {
                 text.push_str(&format!("{residual}*{}", absolute_cell(last, col::REBUILT)));
             }
-            if stream.tail.is_some() {
+            if let Some((tail, _)) = tail {
+                text.push_str(&format!("+{tail}"));
+            } else if stream.tail.is_some() {
                 text.push_str(&format!("+{}", table_ref(self.home, self.layout, row, Column::Tail)));
             }
-            line.rebuilt = Some(Live::number(text, value));
+            line.rebuilt = (text.len() <= MAX_FORMULA).then(|| Live::number(text, value));
         }
         line
     }

@@ -2,6 +2,7 @@
 
 use super::AuditInput;
 use super::lines::{AGREES, DIFFERS};
+use crate::appraisal::Covered;
 use crate::formulas::{one, refer};
 use crate::patch::Cached;
 use crate::references::{Cell, Range, SheetRange, quote_sheet};
@@ -36,45 +37,46 @@ pub(super) fn sheet(input: &AuditInput<'_>) -> Coverage {
     for (i, heading) in headings.iter().enumerate() {
         sheet.text(HEADING, i as u32, Style::Heading, heading);
     }
-    // Totals of cells that this fill writes or makes stale are not those that were read.
-    let touched = |at: &SheetRange| {
-        let cells = input.touched.get(&at.sheet);
-        cells.is_some_and(|cells| at.range.cells().any(|cell| cells.contains(&cell)))
-    };
     let (valued, other): (Vec<_>, Vec<_>) =
-        input.appraisal.coverage.iter().partition(|c| !c.roles.is_empty() && !touched(&c.at));
+        input.appraisal.coverage.iter().partition(|c| !c.roles.is_empty() && !c.follows);
     let first = HEADING + 1;
-    for (i, row) in valued.iter().chain(&other).enumerate() {
-        let at = first + i as u32;
-        sheet.text(at, 0, Style::Text, format!("{}!{}", quote_sheet(&row.at.sheet), row.at.range));
-        sheet.text(at, 1, Style::Wrapped, &row.heading);
-        let role = if row.roles.is_empty() { "not valued".to_owned() } else { row.roles.join("; ") };
-        sheet.text(at, 2, Style::Wrapped, role);
-        if touched(&row.at) {
-            sheet.text(at, 3, Style::Text, "changed by this fill");
-            continue;
-        }
-        sheet.number(at, 3, Style::Money, row.total);
-        let sum = format!("SUM({})", refer(&sheet.name, &row.at));
-        sheet.formula(at, 4, Style::Money, sum, Cached::Number(row.total));
-        let cell = |col| Cell { row: at, col }.to_string();
-        let text = format!("ABS({}-{})", cell(4), cell(3));
-        sheet.formula(at, 5, Style::Difference, text, Cached::Number(0.0));
-        sheet.number(at, 6, Style::Difference, (1e-9 * row.total.abs()).max(1e-6));
-        let text = if row.roles.is_empty() {
-            format!("IF({}<={},\"ties\",\"changed since\")", cell(5), cell(6))
-        } else {
-            let within = format!("IF({}<={},\"{AGREES}\",\"{DIFFERS}\")", cell(5), cell(6));
-            format!("IF(ISNUMBER({}),{within},\"{DIFFERS}\")", cell(5))
-        };
-        let result = if row.roles.is_empty() { "ties" } else { AGREES };
-        sheet.formula(at, 7, Style::Result, text, Cached::Text(result.into()));
+    for (i, covered) in valued.iter().chain(&other).enumerate() {
+        row(&mut sheet, first + i as u32, covered);
     }
     sheet.freeze(first, 1);
     sheet.repeat(HEADING, HEADING);
     let last = first + (valued.len() as u32).max(1) - 1;
     let results = Range { first: Cell { row: first, col: 7 }, last: Cell { row: last, col: 7 } };
     Coverage { sheet, results, valued: valued.len() }
+}
+
+/// One row of numbers.
+fn row(sheet: &mut Sheet, at: u32, covered: &Covered) {
+    sheet.text(at, 0, Style::Text, format!("{}!{}", quote_sheet(&covered.at.sheet), covered.at.range));
+    sheet.text(at, 1, Style::Wrapped, &covered.heading);
+    let valued = !covered.roles.is_empty();
+    let role = if valued { covered.roles.join("; ") } else { "not valued".to_owned() };
+    sheet.text(at, 2, Style::Wrapped, role);
+    if covered.follows {
+        // What it came to before says nothing of what it comes to now.
+        let text = if valued { "filled, or follows filled cells" } else { "follows filled cells" };
+        sheet.text(at, 7, Style::Wrapped, text);
+        return;
+    }
+    sheet.number(at, 3, Style::Money, covered.total);
+    let sum = format!("SUM({})", refer(&sheet.name, &covered.at));
+    sheet.formula(at, 4, Style::Money, sum, Cached::Number(covered.total));
+    let cell = |col| Cell { row: at, col }.to_string();
+    let text = format!("ABS({}-{})", cell(4), cell(3));
+    sheet.formula(at, 5, Style::Difference, text, Cached::Number(0.0));
+    sheet.number(at, 6, Style::Difference, (1e-9 * covered.total.abs()).max(1e-6));
+    let (text, result) = if valued {
+        let within = format!("IF({}<={},\"{AGREES}\",\"{DIFFERS}\")", cell(5), cell(6));
+        (format!("IF(ISNUMBER({}),{within},\"{DIFFERS}\")", cell(5)), AGREES)
+    } else {
+        (format!("IF({}<={},\"ties\",\"changed since\")", cell(5), cell(6)), "ties")
+    };
+    sheet.formula(at, 7, Style::Result, text, Cached::Text(result.into()));
 }
 
 /// The cell of the place beside a result, as another sheet refers to it.

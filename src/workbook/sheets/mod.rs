@@ -12,9 +12,8 @@ mod rebuild;
 mod second_route;
 mod settings;
 mod summary;
+mod tails;
 mod targets;
-
-use std::collections::{BTreeMap, BTreeSet};
 
 use hence_core::CAUTION;
 
@@ -25,9 +24,9 @@ use crate::names_edit::NewName;
 use crate::outcome::ChoiceOutcome;
 use crate::problem::{Problem, Result};
 use crate::references::{Cell, SheetRange};
-use crate::writer::{self, Sheet, Style};
+use crate::writer::{self, Content, Sheet, Style};
 
-pub use own::{DIGEST, OWN, VERDICT, digest};
+pub use own::{DIGEST, OWN, VERDICT};
 pub use summary::VERDICT_AGREES;
 pub(crate) use targets::role_words;
 
@@ -108,8 +107,20 @@ pub struct Carried {
     pub sheet: String,
     /// The cell.
     pub cell: Cell,
-    /// The text or number as text.
-    pub text: String,
+    /// The text, number or formula.
+    pub content: Content,
+    /// How it looks.
+    pub style: Style,
+}
+
+impl Carried {
+    fn write(&self, sheet: &mut Sheet, Cell { row, col }: Cell) {
+        match &self.content {
+            Content::Text(text) => sheet.text(row, col, self.style, text),
+            Content::Number(x) => sheet.number(row, col, self.style, *x),
+            Content::Formula(text, result) => sheet.formula(row, col, self.style, text, result.clone()),
+        }
+    }
 }
 
 /// Everything the sheets are made from.
@@ -133,12 +144,7 @@ pub struct AuditInput<'a> {
     pub carried: &'a [Carried],
     /// What differs in the package by design, a sentence each.
     pub differs: &'a [String],
-    /// Cells that this fill writes, and those whose stored results go because they depend on them.
-    pub touched: &'a Touched,
 }
-
-/// Cells by sheet.
-pub type Touched = BTreeMap<String, BTreeSet<Cell>>;
 
 /// hence's sheets, made.
 #[derive(Clone, Debug)]
@@ -206,12 +212,12 @@ fn put_back(sheet: &mut Sheet, carried: &[Carried]) {
     let own: Vec<&Carried> = carried.iter().filter(|note| note.sheet == sheet.name).collect();
     for note in &own {
         if note.cell.row > used.row || note.cell.col > used.col {
-            sheet.text(note.cell.row, note.cell.col, Style::Text, &note.text);
+            note.write(sheet, note.cell);
             free = free.max(note.cell.row + 1);
         }
     }
     for note in own.iter().filter(|note| note.cell.row <= used.row && note.cell.col <= used.col) {
-        sheet.text(free, 0, Style::Text, &note.text);
+        note.write(sheet, Cell { row: free, col: 0 });
         free += 1;
     }
 }

@@ -14,16 +14,7 @@ pub(super) const HEADING: &str = "What the workbook states";
 /// A line for every cell that states something. The factors and present values were computed from these, so a cell
 /// that says something else later has to turn the verdict, whatever the formulas make of it.
 pub(super) fn lines(input: &AuditInput<'_>, home: &str) -> Vec<Line> {
-    let mut settings = input.appraisal.settings.clone();
-    // A basis of the command line is written into the cell of the workbook's own.
-    for basis in input.appraisal.choices.iter().map(|choice| &choice.basis) {
-        let Some(at) = &basis.at else { continue };
-        if !settings.iter().any(|setting| setting.at == *at) {
-            let value = Stated::Text(basis.value.clone());
-            settings.push(Setting { at: at.clone(), from: basis.from.clone(), value });
-        }
-    }
-    settings.iter().map(|setting| line(setting, home)).collect()
+    input.appraisal.settings.iter().map(|setting| line(setting, home)).collect()
 }
 
 fn line(setting: &Setting, home: &str) -> Line {

@@ -9,7 +9,7 @@ use super::graph::Graph;
 use crate::model::{CellCursor, FormulaKind, FormulaTag, Workbook, text_of};
 use crate::problem::Result;
 use crate::references::{Cell, Corner, Range, Sheets, Token, Tokens};
-use crate::xml::Scanner;
+use crate::xml::{FORMULA_MARKS, Scanner};
 
 /// Functions whose cells or results the formula's text does not settle.
 const UNSETTLED: [&str; 9] =
@@ -104,7 +104,12 @@ impl<'a> Reader<'a> {
                     let opened = matches!(token.event, Event::Start(_));
                     match (in_data, scanner.depth() + usize::from(!opened), tag.local_name().as_ref()) {
                         (false, 2, b"sheetData") => in_data = opened,
-                        (true, 3, b"row") => _ = cursor.row(part, tag)?,
+                        (true, 3, b"row") => {
+                            cursor.row(part, tag)?;
+                            if opened {
+                                scanner.pass_over(tag.name().as_ref(), FORMULA_MARKS);
+                            }
+                        }
                         (true, 4, b"c") => cell = cursor.cell(part, tag)?,
                         (true, 5, b"f") => {
                             let found = Open { tag: FormulaTag::read(part, tag)?, cell, text: String::new() };

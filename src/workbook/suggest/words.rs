@@ -68,6 +68,7 @@ const PHRASES: &[(&str, Meaning)] = &[
     ("receipts", Meaning::Flow(Role::Benefit, "receipts")),
     ("income", Meaning::Flow(Role::Benefit, "income")),
     ("sales", Meaning::Flow(Role::Benefit, "sales")),
+    ("sold", Meaning::Flow(Role::Benefit, "sold")),
     ("cost", Meaning::Flow(Role::Cost, "cost")),
     ("costs", Meaning::Flow(Role::Cost, "costs")),
     ("capex", Meaning::Flow(Role::Cost, "capex")),
@@ -80,6 +81,11 @@ const PHRASES: &[(&str, Meaning)] = &[
     ("operation", Meaning::Flow(Role::Cost, "operation")),
     ("operating", Meaning::Flow(Role::Cost, "operating")),
     ("replacement", Meaning::Flow(Role::Cost, "replacement")),
+    ("replacements", Meaning::Flow(Role::Cost, "replacements")),
+    ("renewal", Meaning::Flow(Role::Cost, "renewal")),
+    ("renewals", Meaning::Flow(Role::Cost, "renewals")),
+    ("upkeep", Meaning::Flow(Role::Cost, "upkeep")),
+    ("repairs", Meaning::Flow(Role::Cost, "repairs")),
     ("monitoring", Meaning::Flow(Role::Cost, "monitoring")),
     ("treatment", Meaning::Flow(Role::Cost, "treatment")),
     ("works", Meaning::Flow(Role::Cost, "works")),
@@ -89,6 +95,19 @@ const PHRASES: &[(&str, Meaning)] = &[
 pub(super) fn meaning(heading: &str) -> Option<Meaning> {
     let heading = format!(" {} ", key(heading));
     PHRASES.iter().find(|(phrase, _)| heading.contains(&format!(" {phrase} "))).map(|(_, meaning)| *meaning)
+}
+
+/// The side of the ledger that a total's heading says: costs in `Total costs`, nothing in `Benefits less costs`.
+pub(super) fn side(heading: &str) -> Option<Role> {
+    let heading = format!(" {} ", key(heading));
+    let says = |phrase: &str| heading.contains(&format!(" {phrase} "));
+    let mut roles =
+        PHRASES.iter().filter(|(phrase, _)| says(phrase)).filter_map(|(_, meaning)| match meaning {
+            Meaning::Flow(role, _) => Some(*role),
+            _ => None,
+        });
+    let first = roles.next()?;
+    roles.all(|role| role == first).then_some(first)
 }
 
 #[cfg(test)]
@@ -103,5 +122,8 @@ mod tests {
         assert_eq!(meaning("Benefit-cost ratio"), Some(Meaning::Result(Role::Ratio, "benefit cost ratio")));
         assert_eq!(meaning("Total costs"), Some(Meaning::Total("total")));
         assert_eq!(meaning("Costume hire"), None);
+        assert_eq!(side("Total costs"), Some(Role::Cost));
+        assert_eq!(side("Benefits less costs"), None);
+        assert_eq!(side("Total"), None);
     }
 }

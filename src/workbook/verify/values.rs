@@ -26,9 +26,14 @@ pub(super) fn check<R: Read + Seek>(
         differs(sheet_place(sheet), format!("a second reader cannot read the sheet: {error}"))
     };
     let mut open: BTreeMap<Cell, Wanted> = writes.iter().map(|(at, write)| (*at, wanted(write))).collect();
+    let last = writes.keys().map(|at| at.row).max();
     let mut cells = book.worksheet_cells_reader(sheet).map_err(unreadable)?;
     while let Some(cell) = cells.next_cell().map_err(unreadable)? {
         let (row, col) = cell.get_position();
+        // Rows come in order, so that nothing written follows.
+        if last.is_none_or(|last| row > last) {
+            break;
+        }
         let Some(wanted) = open.remove(&Cell { row, col }) else { continue };
         let value = cell.get_value();
         let holds = match wanted {

@@ -11,7 +11,7 @@ use xlsxwriter::worksheet::validation::{
     DataValidation, DataValidationErrorType, DataValidationType, ErrorAlertOptions, InputMessageOptions,
 };
 
-use super::{Written, escaped, failed, legal};
+use super::{Written, escaped, failed, legal, unwritten};
 use crate::package::{Changes, Package};
 use crate::problem::Result;
 use crate::references::{Cell, Range, SheetRange};
@@ -218,7 +218,7 @@ impl Form {
 /// # Errors
 /// The writer refuses a name or a text, or no temporary file can be made.
 pub fn form(sheets: &[Form], names: &[(String, SheetRange)]) -> Result<Vec<u8>> {
-    let file = tempfile::NamedTempFile::new().map_err(|e| failed("no temporary file can be made", &e))?;
+    let file = tempfile::NamedTempFile::new().map_err(|e| unwritten("no temporary file can be made", &e))?;
     let path = file.path().to_str().ok_or_else(|| failed("the temporary folder's path is not text", &""))?;
     let book = Workbook::new(path).map_err(|e| failed("the workbook cannot be started", &e))?;
     let mut written = Ok(());
@@ -231,8 +231,9 @@ pub fn form(sheets: &[Form], names: &[(String, SheetRange)]) -> Result<Vec<u8>> 
         written = written.and_then(|()| book.define_name(name, &text));
     }
     let closed = book.close();
-    written.and(closed).map_err(|e| failed("the workbook cannot be written", &e))?;
-    let bytes = std::fs::read(path).map_err(|e| failed("the workbook cannot be read back", &e))?;
+    written.map_err(|e| failed("the workbook cannot be written", &e))?;
+    closed.map_err(|e| unwritten("the workbook cannot be written", &e))?;
+    let bytes = std::fs::read(path).map_err(|e| unwritten("the workbook cannot be read back", &e))?;
     let package = Package::from_bytes("form.xlsx", bytes)?;
     let replace = BTreeMap::from([(STAMPED.to_owned(), UNSTAMPED.as_bytes().to_vec())]);
     package.write(&Changes { replace, ..Changes::default() })
@@ -271,9 +272,9 @@ fn write_sheet(book: &Workbook, sheet: &Form) -> Written {
     }
     out.set_paper(PaperType::A4);
     out.set_footer("&L&A&RPage &P of &N")?;
+    out.set_landscape();
     match sheet.repeat {
         Some((first, last)) => {
-            out.set_landscape();
             out.fit_to_pages(0, 1);
             out.repeat_columns(first as u16, last as u16)?;
         }

@@ -53,7 +53,7 @@ fn entries(bytes: &[u8]) -> BTreeMap<String, Entry> {
                 raw.extra_data(),
                 raw.comment()
             );
-            (raw.name().expect("a name").into_owned(), header, packed)
+            (raw.name().expect("its name").into_owned(), header, packed)
         };
         let mut content = Vec::new();
         zip.by_index(i).expect("an entry").read_to_end(&mut content).expect("its content");
