@@ -14,7 +14,7 @@ use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
 use crate::package::{Package, may_write, same_file, write_atomically};
 use crate::patch::{CellWrite, patch_sheet};
-use crate::plan::{Plan, plan_targets};
+use crate::plan::{Plan, Stale, Ways, plan_targets};
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::reading::{ReadCell, Sheets, Value};
@@ -122,25 +122,41 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     let names = SheetNames::choose(&foreign_sheets(&book, &previous));
     let layout = Layout::new(&appraisal, &outcomes, &names);
 
-    let mut plan =
-        plan_targets(&appraisal, &outcomes, &layout, &previous, request.formulas, request.replace_formulas);
-    if let Some(basis) = stated {
-        plan_basis(&mut plan, package, &book, &appraisal, &outcomes, basis)?;
-    }
-    problems.append(&mut plan.problems);
+    let earlier = own::written(package, &book, &previous, &names)?;
+    let plan_with = |stale: &Stale| -> Result<Plan> {
+        let ways = Ways {
+            previous: &previous,
+            written: &earlier,
+            formulas: request.formulas,
+            replace_formulas: request.replace_formulas,
+            stale,
+        };
+        let mut plan = plan_targets(&appraisal, &outcomes, &layout, &ways);
+        if let Some(basis) = stated {
+            plan_basis(&mut plan, package, &book, &appraisal, &outcomes, basis)?;
+        }
+        Ok(plan)
+    };
+    let mut plan = plan_with(&Stale::new())?;
     let carried = own::carried(package, &book, &previous, &names)?;
 
-    state(&mut appraisal, &plan, package, &book)?;
     let written: Vec<SheetRange> = plan.changed.clone();
     let dependents = stale::dependents(package, &book, &written)?;
+    let foreign =
+        dependents.cells.iter().filter(|(sheet, _)| !previous.iter().any(|own| own.index == **sheet));
+    let stale: Stale =
+        foreign.map(|(sheet, cells)| (book.sheets[*sheet].name.clone(), cells.clone())).collect();
+    let waits = |at: &SheetRange| stale.get(&at.sheet).is_some_and(|cells| cells.contains(&at.range.first));
+    if plan.cells.iter().any(|cell| !cell.filled && waits(&cell.at)) {
+        // Formulas left in targets that depend on what is written: what they show is from before.
+        plan = plan_with(&stale)?;
+    }
+    problems.append(&mut plan.problems);
+    state(&mut appraisal, &plan, package, &book)?;
     follow(&mut appraisal, &book, &written, &dependents, &mut problems);
     problems.extend(dependents.warnings);
-    for (sheet, cells) in dependents.cells {
-        let name = &book.sheets[sheet].name;
-        if previous.iter().any(|own| own.index == sheet) {
-            continue;
-        }
-        let writes = plan.writes.entry(name.clone()).or_default();
+    for (name, cells) in stale {
+        let writes = plan.writes.entry(name).or_default();
         for cell in cells {
             writes.entry(cell).or_insert(CellWrite::DropValue);
         }

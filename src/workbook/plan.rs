@@ -1,6 +1,6 @@
 //! What a fill does to each target cell: write it, tick it, or report it.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 use crate::appraisal::{Appraisal, Held, Target};
 use crate::formulas::{expected, is_own_text, target_writes};
@@ -48,30 +48,48 @@ impl Plan {
     }
 }
 
+/// Cells by sheet whose stored results a fill makes stale.
+pub type Stale = BTreeMap<String, BTreeSet<Cell>>;
+
+/// What an earlier fill left, and how this one is to go about targets.
+pub struct Ways<'a> {
+    /// hence's own sheets in the workbook.
+    pub previous: &'a [OwnSheet],
+    /// Formulas that an earlier fill wrote, by place.
+    pub written: &'a BTreeMap<String, String>,
+    /// Write formulas, not numbers.
+    pub formulas: bool,
+    /// Replace formulas that are found, instead of comparing them.
+    pub replace_formulas: bool,
+    /// Formulas among these cells cannot be compared.
+    pub stale: &'a Stale,
+}
+
 /// Decides every target cell of every option.
 pub fn plan_targets(
     appraisal: &Appraisal,
     outcomes: &[ChoiceOutcome],
     layout: &Layout,
-    previous: &[OwnSheet],
-    formulas: bool,
-    replace_formulas: bool,
+    ways: &Ways<'_>,
 ) -> Plan {
     let mut plan = Plan::default();
-    let own: Vec<String> = previous.iter().map(|sheet| format!("{}!", quote_sheet(&sheet.name))).collect();
+    let own: Vec<String> =
+        ways.previous.iter().map(|sheet| format!("{}!", quote_sheet(&sheet.name))).collect();
     for (c, choice) in appraisal.choices.iter().enumerate() {
         for (t, target) in choice.targets.iter().enumerate() {
             let results = expected(appraisal, outcomes, layout, c, target);
-            let writes = target_writes(appraisal, outcomes, layout, c, target, formulas);
+            let writes = target_writes(appraisal, outcomes, layout, c, target, ways.formulas);
             let mut kept = Kept::default();
             for (i, (write, result)) in writes.into_iter().zip(&results).enumerate() {
                 let held = target.held.get(i).unwrap_or(&Held::Blank);
+                let at = cell_of(&target.at, i);
                 let replaceable = match held {
                     Held::Blank | Held::Number(_) | Held::Error(_) => true,
                     Held::Text(text) => is_own_text(text),
                     Held::Formula { text, .. } => {
-                        replace_formulas
+                        ways.replace_formulas
                             || own.iter().any(|sheet| text.contains(sheet.as_str()))
+                            || ways.written.get(&at.to_string()).is_some_and(|own| same_formula(own, text))
                             || matches!(&write, CellWrite::Formula(new, _) if same_formula(new, text))
                     }
                 };
@@ -80,11 +98,16 @@ pub fn plan_targets(
                     choice: c,
                     target: t,
                     index: i,
-                    at: cell_of(&target.at, i),
+                    at,
                     expected,
                     filled: replaceable,
                     tolerance: expected.map_or(0.0, |x| tolerance::of_cell(target, i, x)),
+                    awaits: false,
                 };
+                let stale =
+                    ways.stale.get(&target.at.sheet).is_some_and(|s| s.contains(&cell.at.range.first));
+                let awaits = stale || matches!(held, Held::Formula { value: None, shown: None, .. });
+                let cell = TargetCell { awaits: awaits && !replaceable, ..cell };
                 if replaceable {
                     plan.filled += 1;
                     plan.write(cell.at.clone(), role_words(&target.role), words(held), write);
@@ -141,7 +164,7 @@ impl Kept {
             return false;
         };
         match (value, shown, expected) {
-            (None, None, _) => self.waiting.push(cell.at.clone()),
+            _ if cell.awaits => self.waiting.push(cell.at.clone()),
             (Some(found), _, Cached::Number(x)) if (found - x).abs() <= cell.tolerance => {
                 self.fresh_tick = true;
             }
@@ -176,13 +199,13 @@ impl Kept {
         }
         if let Some(place) = span(&self.waiting) {
             let message = format!(
-                "{} of {total} formulas have no result in the file, so nothing was compared",
+                "{} of {total} formulas have no result yet, or one from before this fill, so nothing was compared",
                 self.waiting.len()
             );
-            problems.push(
-                Problem::warning("awaits-recalculation", place.called(&target.from), message)
-                    .hint("open and save the workbook in a spreadsheet program first"),
-            );
+            problems
+                .push(Problem::warning("awaits-recalculation", place.called(&target.from), message).hint(
+                    "open and save the output in a spreadsheet program, and look at the verdict there",
+                ));
         }
         let cells: Vec<SheetRange> = self.differing.iter().map(|(at, ..)| at.clone()).collect();
         if let (Some(place), Some((at, found, expected, difference))) = (span(&cells), self.differing.first())
