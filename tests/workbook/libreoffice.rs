@@ -5,7 +5,7 @@
 
 pub mod books;
 pub mod cells;
-mod office;
+pub mod office;
 
 use std::path::Path;
 use std::sync::OnceLock;
