@@ -161,7 +161,7 @@ fn increments(report: &Report, title: &str) -> String {
     let mut head = headings(title);
     head.push("Rank".to_owned());
     let mut rows = vec![head];
-    let npv = |option: &OptionReport| option.increment.map_or(0.0, |increment| increment.npv);
+    let npv = |option: &OptionReport| option.totals().npv;
     for option in &report.options {
         let Some(increment) = &option.increment else { continue };
         let mut row = totals(&option.name, increment);

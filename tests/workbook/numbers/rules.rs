@@ -3,7 +3,6 @@
 use hence_core::Catalogue;
 use hence_workbook::check::check;
 use hence_workbook::fill::{FillRequest, Filled, fill};
-use hence_workbook::package::Package;
 use hence_workbook::problem::Severity;
 use hence_workbook::sheets::VERDICT_AGREES;
 
