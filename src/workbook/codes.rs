@@ -239,7 +239,7 @@ pub const CODES: &[Code] = codes! {
         "validation": "A target has a validation rule, which the results may not meet.",
     }
     Fill {
-        "awaits-recalculation": "Formulas in a target have no stored result, or one of before the fill, so they are not compared.",
+        "awaits-recalculation": "Formulas in a target have no stored result, or one that the fill makes stale, so they are not compared.",
         "cannot-graft": "Part of hence's own sheets cannot be added: a fault of hence, please report it.",
         "chart-count": "The charts made are not those described: a fault of hence, please report it.",
         "companion": "The schedule that is to be shown beside the declared one could not be valued.",

@@ -7,7 +7,7 @@ use hence_core::{Basis, Catalogue, Compounding, Spec};
 use sha2::{Digest, Sha256};
 
 use crate::appraisal::{Appraisal, Given, Setting, Stated};
-use crate::follow::{self, Followers};
+use crate::follow;
 use crate::graft::{Graft, graft};
 use crate::layout::Layout;
 use crate::model::Workbook;
@@ -15,14 +15,14 @@ use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
 use crate::package::{Changes, Package, may_write, same_file, write_atomically};
 use crate::patch::{CellWrite, patch_sheet};
-use crate::plan::{Plan, plan_targets};
+use crate::plan::{Plan, Stale, Ways, plan_targets};
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::{Cell, SheetRange};
 use crate::report::{Companion, Report, option_reports};
 use crate::resolve::{Options, resolve};
-use crate::sheets::{AuditInput, Meta, SheetNames, build};
+use crate::sheets::{AuditInput, Meta, SheetNames, VERDICT_AGREES, build};
 use crate::stale;
 use crate::valuation::{from_core, value};
 use crate::verify::{Expected, verify};
@@ -123,27 +123,41 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     let names = SheetNames::choose(&foreign_sheets(&book, &previous));
     let layout = Layout::new(&appraisal, &outcomes, &names);
 
-    let mut plan =
-        plan_targets(&appraisal, &outcomes, &layout, &previous, request.formulas, request.replace_formulas);
-    if let Some(basis) = stated {
-        plan_basis(&mut plan, package, &book, &appraisal, &outcomes, basis)?;
-    }
+    let earlier = own::written(package, &book, &previous, &names)?;
+    let plan_with = |stale: &Stale| -> Result<Plan> {
+        let ways = Ways {
+            previous: &previous,
+            written: &earlier,
+            formulas: request.formulas,
+            replace_formulas: request.replace_formulas,
+            stale,
+        };
+        let mut plan = plan_targets(&appraisal, &outcomes, &layout, &ways);
+        if let Some(basis) = stated {
+            plan_basis(&mut plan, package, &book, &appraisal, &outcomes, basis)?;
+        }
+        Ok(plan)
+    };
+    let mut plan = plan_with(&Stale::new())?;
     let carried = own::carried(package, &book, &previous, &names)?;
 
-    state(&mut appraisal, &plan, package, &book)?;
-    let mut dependents = stale::dependents(package, &book, &plan.changed)?;
-    let followers = Followers::new(&book, &dependents);
-    plan.compare(&appraisal, |at| followers.any(at));
+    let written: Vec<SheetRange> = plan.changed.clone();
+    let dependents = stale::dependents(package, &book, &written)?;
+    let foreign =
+        dependents.cells.iter().filter(|(sheet, _)| !previous.iter().any(|own| own.index == **sheet));
+    let stale: Stale =
+        foreign.map(|(sheet, cells)| (book.sheets[*sheet].name.clone(), cells.clone())).collect();
+    if plan.cells.iter().any(|cell| !cell.filled && follow::any(&stale, &cell.at)) {
+        // Formulas left in targets that depend on what is written: what they show is from before.
+        plan = plan_with(&stale)?;
+    }
     problems.append(&mut plan.problems);
-    followers.mark(&mut appraisal, &plan.changed, &mut problems);
-    let unknown = followers.unknown(&appraisal, &plan.unknown);
-    problems.append(&mut dependents.warnings);
-    for (sheet, cells) in dependents.cells {
-        let name = &book.sheets[sheet].name;
-        if previous.iter().any(|own| own.index == sheet) {
-            continue;
-        }
-        let writes = plan.writes.entry(name.clone()).or_default();
+    state(&mut appraisal, &plan, package, &book)?;
+    follow::mark(&mut appraisal, &stale, &written, &mut problems);
+    problems.extend(dependents.warnings);
+    let unknown = follow::unknown(&appraisal, &stale, &plan.cells);
+    for (name, cells) in stale {
+        let writes = plan.writes.entry(name).or_default();
         for cell in cells {
             writes.entry(cell).or_insert(CellWrite::DropValue);
         }
@@ -183,7 +197,9 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         follow::forget(&made, &unknown, &grafted.sheets, &mut plan.writes, &mut changes)?;
         patch(&mut changes, package, &book, &plan.writes)?;
         bytes = package.write(&changes)?;
-        verdict = follow::AWAITS.to_owned();
+        if verdict == VERDICT_AGREES {
+            verdict = follow::AWAITS.to_owned();
+        }
     }
     changes.forget_contents();
     verify(

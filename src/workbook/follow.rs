@@ -11,61 +11,51 @@ use crate::graft::GraftedSheet;
 use crate::model::Workbook;
 use crate::package::{Changes, Package};
 use crate::patch::{Cached, CellWrite, patch_sheet};
+use crate::plan::Stale;
 use crate::problem::{Place, Problem, Result};
 use crate::references::{Cell, SheetRange};
-use crate::stale::{self, Dependents};
+use crate::sheets::TargetCell;
+use crate::stale;
 
 /// The verdict of a workbook in which something that hence compared or valued follows filled cells.
 pub const AWAITS: &str = "awaits recalculation: open the output in a spreadsheet program and look there";
 
-/// The formula cells that depend on filled cells.
-pub struct Followers {
-    cells: BTreeMap<String, BTreeSet<Cell>>,
+/// Whether one of the cells follows.
+pub fn any(stale: &Stale, at: &SheetRange) -> bool {
+    let (first, last) = (at.range.first, at.range.last);
+    let cells = stale.get(&at.sheet);
+    cells.is_some_and(|cells| cells.range(first..=last).any(|&cell| at.range.contains(cell)))
 }
 
-impl Followers {
-    /// By the names of the sheets.
-    pub fn new(book: &Workbook, dependents: &Dependents) -> Self {
-        let cells = dependents.cells.iter();
-        Followers { cells: cells.map(|(&i, cells)| (book.sheets[i].name.clone(), cells.clone())).collect() }
+/// Marks the rows of the coverage that follow, and warns of flows that do.
+pub fn mark(appraisal: &mut Appraisal, stale: &Stale, written: &[SheetRange], problems: &mut Vec<Problem>) {
+    for row in &mut appraisal.coverage {
+        let filled =
+            |cell: &SheetRange| cell.sheet == row.at.sheet && row.at.range.contains(cell.range.first);
+        row.follows |= written.iter().any(filled) || any(stale, &row.at);
     }
-
-    /// Whether one of the cells follows.
-    pub fn any(&self, at: &SheetRange) -> bool {
-        let (first, last) = (at.range.first, at.range.last);
-        let cells = self.cells.get(&at.sheet);
-        cells.is_some_and(|cells| cells.range(first..=last).any(|&cell| at.range.contains(cell)))
-    }
-
-    /// Marks the rows of the coverage that follow, and warns of flows that do.
-    pub fn mark(&self, appraisal: &mut Appraisal, written: &[SheetRange], problems: &mut Vec<Problem>) {
-        for row in &mut appraisal.coverage {
-            let filled =
-                |cell: &SheetRange| cell.sheet == row.at.sheet && row.at.range.contains(cell.range.first);
-            row.follows |= written.iter().any(filled) || self.any(&row.at);
-        }
-        let mut seen = BTreeSet::new();
-        for stream in appraisal.choices.iter().flat_map(|choice| &choice.streams) {
-            if self.any(&stream.at) && seen.insert(stream.at.clone()) {
-                let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
-                let message =
-                    "its formulas depend, or may depend, on cells that are filled: it was valued as it stood";
-                problems.push(Problem::warning("flow-follows", place, message).hint(
-                    "open the output in a spreadsheet program, save it, and fill it again if the verdict differs",
-                ));
-            }
+    let mut seen = BTreeSet::new();
+    for stream in appraisal.choices.iter().flat_map(|choice| &choice.streams) {
+        if any(stale, &stream.at) && seen.insert(stream.at.clone()) {
+            let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+            let message =
+                "its formulas depend, or may depend, on cells that are filled: it was valued as it stood";
+            problems.push(Problem::warning("flow-follows", place, message).hint(
+                "open the output in a spreadsheet program, save it, and fill it again if the verdict differs",
+            ));
         }
     }
+}
 
-    /// The cells that hence's sheets read and whose values are not known: `kept`, the results that were left, and flows,
-    /// years and settings that follow.
-    pub fn unknown(&self, appraisal: &Appraisal, kept: &[SheetRange]) -> Vec<SheetRange> {
-        let flows = appraisal.choices.iter().flat_map(|choice| &choice.streams).map(|stream| &stream.at);
-        let years = appraisal.axes.iter().map(|axis| &axis.at);
-        let settings = appraisal.settings.iter().map(|setting| &setting.at);
-        let follow = flows.chain(years).chain(settings).filter(|at| self.any(at));
-        kept.iter().chain(follow).cloned().collect()
-    }
+/// The cells that hence's sheets read and whose values are not known: results that await recalculation, and flows, years
+/// and settings that follow.
+pub fn unknown(appraisal: &Appraisal, stale: &Stale, cells: &[TargetCell]) -> Vec<SheetRange> {
+    let kept = cells.iter().filter(|cell| cell.awaits).map(|cell| &cell.at);
+    let flows = appraisal.choices.iter().flat_map(|choice| &choice.streams).map(|stream| &stream.at);
+    let years = appraisal.axes.iter().map(|axis| &axis.at);
+    let settings = appraisal.settings.iter().map(|setting| &setting.at);
+    let follow = flows.chain(years).chain(settings).filter(|at| any(stale, at));
+    kept.chain(follow).cloned().collect()
 }
 
 /// Drops the stored result of everything that rests on unknown cells, on hence's own sheets and elsewhere.

@@ -1,11 +1,14 @@
 //! What an earlier fill left in a workbook: hence's own sheets, and the notes people typed on them.
 
+use std::collections::BTreeMap;
+
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::patch::Cached;
 use crate::problem::{Place, Problem, Result};
 use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::{Cell, NameTarget, Range, SheetRange};
+use crate::sheets::changes::{AFTER as AFTER_COLUMN, CELL as CELL_COLUMN, SHEET as SHEET_COLUMN};
 use crate::sheets::own::{DIGEST, FORMULA_MARK, OWN, digest, number_mark, text_mark};
 use crate::sheets::{Carried, SheetNames};
 use crate::writer::{Content, Style};
@@ -93,6 +96,37 @@ pub fn carried(
         }
     }
     if problems.is_empty() { Ok(notes) } else { Err(problems.into()) }
+}
+
+/// The formulas that an earlier fill wrote, by place, from its list of changes.
+///
+/// # Errors
+/// Where that sheet cannot be read.
+pub fn written(
+    package: &Package,
+    book: &Workbook,
+    previous: &[OwnSheet],
+    names: &SheetNames,
+) -> Result<BTreeMap<String, String>> {
+    let mut formulas = BTreeMap::new();
+    let Some(own) = previous.iter().find(|own| kind_of(&own.name, names) == names.changes) else {
+        return Ok(formulas);
+    };
+    let at = SheetRange { sheet: own.name.clone(), range: own.used };
+    let grid = Sheets::open(package, book)?.range(&at)?;
+    let text = |row: u32, col: u32| match grid.get(Cell { row, col }).map(|cell| &cell.value) {
+        Some(Value::Text(text)) => Some(text.clone()),
+        _ => None,
+    };
+    for row in own.used.first.row..=own.used.last.row {
+        let columns = (text(row, SHEET_COLUMN), text(row, CELL_COLUMN), text(row, AFTER_COLUMN));
+        if let (Some(sheet), Some(cell), Some(after)) = columns
+            && let Some(formula) = after.strip_prefix('=')
+        {
+            formulas.insert(format!("{sheet}!{cell}"), formula.to_owned());
+        }
+    }
+    Ok(formulas)
 }
 
 /// What a cell adds to the digest of its sheet.

@@ -1,6 +1,6 @@
 //! What a fill does to each target cell: write it, tick it, or report it.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 use crate::appraisal::{Appraisal, Held, Target};
 use crate::formulas::{expected, is_own_text, target_writes};
@@ -29,29 +29,11 @@ pub struct Plan {
     pub problems: Vec<Problem>,
     /// How many target cells were written.
     pub filled: usize,
-    /// How many formulas were left and agree, once they are compared.
+    /// How many formulas were left and agree.
     pub ticked: usize,
-    /// Formulas that were left and whose result is not known, once they are compared.
-    pub unknown: Vec<SheetRange>,
-    kept: Vec<(TargetCell, Held, Cached)>,
 }
 
 impl Plan {
-    /// Compares the cells that are left as they are. Those that follow filled cells hold a result of before, which says
-    /// nothing of what they come to.
-    pub fn compare(&mut self, appraisal: &Appraisal, follows: impl Fn(&SheetRange) -> bool) {
-        let mut by_target: BTreeMap<(usize, usize), Kept> = BTreeMap::new();
-        for (cell, held, expected) in &self.kept {
-            let kept = by_target.entry((cell.choice, cell.target)).or_default();
-            kept.compare(held, expected, cell, follows(&cell.at));
-        }
-        for ((choice, target), kept) in by_target {
-            self.ticked += kept.ticked;
-            self.unknown.extend(kept.waiting.iter().chain(&kept.following).cloned());
-            self.problems.extend(kept.problems(&appraisal.choices[choice].targets[target]));
-        }
-    }
-
     /// Writes a cell, and keeps what it held before.
     pub fn write(&mut self, at: SheetRange, role: String, before: String, write: CellWrite) {
         let after = match &write {
@@ -66,29 +48,48 @@ impl Plan {
     }
 }
 
+/// Cells by sheet whose stored results a fill makes stale.
+pub type Stale = BTreeMap<String, BTreeSet<Cell>>;
+
+/// What an earlier fill left, and how this one is to go about targets.
+pub struct Ways<'a> {
+    /// hence's own sheets in the workbook.
+    pub previous: &'a [OwnSheet],
+    /// Formulas that an earlier fill wrote, by place.
+    pub written: &'a BTreeMap<String, String>,
+    /// Write formulas, not numbers.
+    pub formulas: bool,
+    /// Replace formulas that are found, instead of comparing them.
+    pub replace_formulas: bool,
+    /// Formulas among these cells cannot be compared.
+    pub stale: &'a Stale,
+}
+
 /// Decides every target cell of every option.
 pub fn plan_targets(
     appraisal: &Appraisal,
     outcomes: &[ChoiceOutcome],
     layout: &Layout,
-    previous: &[OwnSheet],
-    formulas: bool,
-    replace_formulas: bool,
+    ways: &Ways<'_>,
 ) -> Plan {
     let mut plan = Plan::default();
-    let own: Vec<String> = previous.iter().map(|sheet| format!("{}!", quote_sheet(&sheet.name))).collect();
+    let own: Vec<String> =
+        ways.previous.iter().map(|sheet| format!("{}!", quote_sheet(&sheet.name))).collect();
     for (c, choice) in appraisal.choices.iter().enumerate() {
         for (t, target) in choice.targets.iter().enumerate() {
             let results = expected(appraisal, outcomes, layout, c, target);
-            let writes = target_writes(appraisal, outcomes, layout, c, target, formulas);
+            let writes = target_writes(appraisal, outcomes, layout, c, target, ways.formulas);
+            let mut kept = Kept::default();
             for (i, (write, result)) in writes.into_iter().zip(&results).enumerate() {
                 let held = target.held.get(i).unwrap_or(&Held::Blank);
+                let at = cell_of(&target.at, i);
                 let replaceable = match held {
                     Held::Blank | Held::Number(_) | Held::Error(_) => true,
                     Held::Text(text) => is_own_text(text),
                     Held::Formula { text, .. } => {
-                        replace_formulas
+                        ways.replace_formulas
                             || own.iter().any(|sheet| text.contains(sheet.as_str()))
+                            || ways.written.get(&at.to_string()).is_some_and(|own| same_formula(own, text))
                             || matches!(&write, CellWrite::Formula(new, _) if same_formula(new, text))
                     }
                 };
@@ -97,23 +98,26 @@ pub fn plan_targets(
                     choice: c,
                     target: t,
                     index: i,
-                    at: cell_of(&target.at, i),
+                    at,
                     expected,
                     filled: replaceable,
                     tolerance: expected.map_or(0.0, |x| tolerance::of_cell(target, i, x)),
+                    awaits: false,
                 };
+                let stale =
+                    ways.stale.get(&target.at.sheet).is_some_and(|s| s.contains(&cell.at.range.first));
+                let awaits = stale || matches!(held, Held::Formula { value: None, shown: None, .. });
+                let cell = TargetCell { awaits: awaits && !replaceable, ..cell };
                 if replaceable {
                     plan.filled += 1;
                     plan.write(cell.at.clone(), role_words(&target.role), words(held), write);
                     plan.cells.push(cell);
-                } else {
-                    plan.kept.push((cell.clone(), held.clone(), result.clone()));
-                    // Text is reported and has no place among the checks.
-                    if matches!(held, Held::Formula { .. }) {
-                        plan.cells.push(cell);
-                    }
+                } else if kept.compare(held, result, &cell) {
+                    plan.ticked += kept.take_tick();
+                    plan.cells.push(cell);
                 }
             }
+            plan.problems.extend(kept.problems(target));
         }
     }
     plan
@@ -148,23 +152,23 @@ pub fn words(held: &Held) -> String {
 struct Kept {
     texts: Vec<SheetRange>,
     waiting: Vec<SheetRange>,
-    following: Vec<SheetRange>,
     differing: Vec<(SheetRange, String, Cached, Option<f64>)>,
-    ticked: usize,
+    fresh_tick: bool,
 }
 
 impl Kept {
-    /// Compares one cell.
-    fn compare(&mut self, held: &Held, expected: &Cached, cell: &TargetCell, follows: bool) {
+    /// Compares one cell; true where it enters the audit's checks.
+    fn compare(&mut self, held: &Held, expected: &Cached, cell: &TargetCell) -> bool {
         let Held::Formula { value, shown, .. } = held else {
             self.texts.push(cell.at.clone());
-            return;
+            return false;
         };
         match (value, shown, expected) {
-            _ if follows => self.following.push(cell.at.clone()),
-            (None, None, _) => self.waiting.push(cell.at.clone()),
-            (Some(found), _, Cached::Number(x)) if (found - x).abs() <= cell.tolerance => self.ticked += 1,
-            (None, Some(shown), Cached::Text(text)) if same_text(shown, text) => self.ticked += 1,
+            _ if cell.awaits => self.waiting.push(cell.at.clone()),
+            (Some(found), _, Cached::Number(x)) if (found - x).abs() <= cell.tolerance => {
+                self.fresh_tick = true;
+            }
+            (None, Some(shown), Cached::Text(text)) if same_text(shown, text) => self.fresh_tick = true,
             (value, shown, expected) => {
                 let found = value.map(|x| x.to_string()).or(shown.clone()).unwrap_or_default();
                 let difference = match expected {
@@ -174,6 +178,11 @@ impl Kept {
                 self.differing.push((cell.at.clone(), found, expected.clone(), difference));
             }
         }
+        true
+    }
+
+    fn take_tick(&mut self) -> usize {
+        usize::from(std::mem::take(&mut self.fresh_tick))
     }
 
     /// One problem a cause, over the cells it concerns.
@@ -190,24 +199,13 @@ impl Kept {
         }
         if let Some(place) = span(&self.waiting) {
             let message = format!(
-                "{} of {total} formulas have no result in the file, so nothing was compared",
+                "{} of {total} formulas have no result yet, or one from before this fill, so nothing was compared",
                 self.waiting.len()
             );
-            problems.push(
-                Problem::warning("awaits-recalculation", place.called(&target.from), message)
-                    .hint("open and save the workbook in a spreadsheet program first"),
-            );
-        }
-        if let Some(place) = span(&self.following) {
-            let message = format!(
-                "{} of {total} formulas depend on cells that are filled, so they are compared when the output is \
-                 computed",
-                self.following.len()
-            );
-            problems.push(
-                Problem::warning("awaits-recalculation", place.called(&target.from), message)
-                    .hint("open the output in a spreadsheet program and look at the verdict"),
-            );
+            problems
+                .push(Problem::warning("awaits-recalculation", place.called(&target.from), message).hint(
+                    "open and save the output in a spreadsheet program, and look at the verdict there",
+                ));
         }
         let cells: Vec<SheetRange> = self.differing.iter().map(|(at, ..)| at.clone()).collect();
         if let (Some(place), Some((at, found, expected, difference))) = (span(&cells), self.differing.first())

@@ -258,7 +258,9 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
                 *flows.last_mut().unwrap() -= residual.value * s.unit;
             }
             let pv_by_year: Vec<f64> = flows.iter().zip(&factors).map(|(x, d)| x * d).collect();
-            let pv_tail = if s.tail.is_some() { 12_345.0 } else { 0.0 };
+            // For ever at 3.5%, after the last flow.
+            let for_ever = flows[flows.len() - 1] / 0.035 * factors[factors.len() - 1];
+            let pv_tail = if s.tail.is_some() { for_ever } else { 0.0 };
             let pv = pv_by_year.iter().sum::<f64>() + pv_tail;
             StreamOutcome { undiscounted: flows.iter().sum(), flows, pv_by_year, pv_tail, pv }
         })

@@ -113,6 +113,7 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
                     expected,
                     filled: matches!(target.held[index], Held::Blank),
                     tolerance: expected.map_or(0.0, |x| 1e-9 * x.abs().max(1.0)),
+                    awaits: false,
                 });
             }
         }

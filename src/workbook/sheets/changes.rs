@@ -4,6 +4,12 @@ use super::AuditInput;
 use crate::references::quote_sheet;
 use crate::writer::{Sheet, Style};
 
+/// The column of a change's sheet, as formulas quote it.
+pub(crate) const SHEET: u32 = 0;
+/// The column of its cell.
+pub(crate) const CELL: u32 = 1;
+/// The column of what it holds now; a formula begins with an equals sign.
+pub(crate) const AFTER: u32 = 4;
 /// The row of column headings.
 const HEADING: u32 = 3;
 
@@ -38,11 +44,11 @@ pub(super) fn sheet(input: &AuditInput<'_>) -> Sheet {
     }
     for (i, change) in input.changes.iter().enumerate() {
         let row = HEADING + 1 + i as u32;
-        sheet.text(row, 0, Style::Text, quote_sheet(&change.at.sheet));
-        sheet.text(row, 1, Style::Text, change.at.range.to_string());
+        sheet.text(row, SHEET, Style::Text, quote_sheet(&change.at.sheet));
+        sheet.text(row, CELL, Style::Text, change.at.range.to_string());
         sheet.text(row, 2, Style::Wrapped, &change.role);
         sheet.text(row, 3, Style::Wrapped, if change.before.is_empty() { "(blank)" } else { &change.before });
-        sheet.text(row, 4, Style::Wrapped, &change.after);
+        sheet.text(row, AFTER, Style::Wrapped, &change.after);
     }
     sheet.freeze(HEADING + 1, 0);
     sheet.repeat(HEADING, HEADING);

@@ -8,7 +8,7 @@ use crate::formulas::{absolute, nth, refer, refer_cell, residual, residual_sign,
 use crate::layout::{Column, LabelValue, Layout, label_value};
 use crate::patch::Cached;
 use crate::references::{Cell, Range, SheetRange, quote_sheet};
-use crate::writer::{Sheet, Style};
+use crate::writer::{MAX_FORMULA, Sheet, Style};
 
 /// The row of column headings.
 const HEADING: u32 = 3;
@@ -27,6 +27,8 @@ pub(super) struct Checks {
     pub settings: usize,
     /// Place of each check that differs, in order.
     pub differing: Vec<String>,
+    /// Number of checks of formulas that have no result yet.
+    pub awaiting: usize,
     /// Number of checks that have a second route.
     pub independent: usize,
 }
@@ -97,6 +99,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
         count: lines.len(),
         settings: make.settings.len(),
         differing: lines.iter().filter(|(_, l)| !l.agrees()).map(|(_, l)| l.place.clone()).collect(),
+        awaiting: lines.iter().filter(|(_, l)| l.awaits).count(),
         independent: lines.iter().filter(|(_, l)| l.rebuilt.is_some()).count(),
     }
 }
@@ -235,8 +238,13 @@ impl<'a> Maker<'a> {
         line.recorded = Live::number(recorded, outcome.factors[i]);
         if let Some(t) = target {
             let same = |other: &&TargetCell| other.at.sheet == at.sheet && other.at.range.first == cell;
-            let filled = self.input.cells.iter().find(same).is_none_or(|other| other.filled);
-            let value = if filled { Cached::Number(outcome.factors[i]) } else { held(&t.held[i]) };
+            let found = self.input.cells.iter().find(same);
+            line.awaits = found.is_some_and(|other| other.awaits);
+            let value = match found {
+                Some(other) if other.awaits => Cached::None,
+                Some(other) if !other.filled => held(&t.held[i]),
+                _ => Cached::Number(outcome.factors[i]),
+            };
             line.now = Some(Live { formula: refer_cell(self.home, &at.sheet, cell), value });
         }
         line
@@ -271,7 +279,13 @@ impl<'a> Maker<'a> {
             let last = rebuilt.factor(stream.raw.len().checked_sub(1)?)?;
             total += residual_sign(stream.kind) * stream.unit * given.value * last;
         }
-        Some(total + self.input.outcomes[c].streams[s].pv_tail)
+        let tail = match (&stream.tail, self.rebuilt_tail(c, s)) {
+            (None, _) => 0.0,
+            (Some(_), Some((_, value))) => value,
+            // No second route: its line says so.
+            (Some(_), None) => self.input.outcomes[c].streams[s].pv_tail,
+        };
+        Some(total + tail)
     }
 
     fn stream(&self, c: usize, s: usize) -> Line {
@@ -279,9 +293,13 @@ impl<'a> Maker<'a> {
         let outcome = &self.input.outcomes[c].streams[s];
         let at = self.sections[c];
         let row = self.layout.rows[c].streams[s];
-        let what = match stream.tail {
-            None => format!("PV: {}", stream.name),
-            Some(_) => format!("PV: {} (after the last year: a constant)", stream.name),
+        let tail = self.rebuilt_tail(c, s);
+        let what = match (&stream.tail, &tail) {
+            (None, _) => format!("PV: {}", stream.name),
+            (Some(_), Some(_)) => format!("PV: {} (with what follows the last year)", stream.name),
+            (Some(_), None) => {
+                format!("PV: {} (what follows the last year is not independently checked)", stream.name)
+            }
         };
         let gross: f64 = outcome.pv_by_year.iter().map(|x| x.abs()).sum::<f64>() + outcome.pv_tail.abs();
         let now = Live::number(table_ref(self.home, self.layout, row, Column::Value), outcome.pv);
@@ -297,10 +315,12 @@ impl<'a> Maker<'a> {
             if let Some(residual) = residual(stream, self.home) {
                 text.push_str(&format!("{residual}*{}", absolute_cell(last, col::REBUILT)));
             }
-            if stream.tail.is_some() {
+            if let Some((tail, _)) = tail {
+                text.push_str(&format!("+{tail}"));
+            } else if stream.tail.is_some() {
                 text.push_str(&format!("+{}", table_ref(self.home, self.layout, row, Column::Tail)));
             }
-            line.rebuilt = Some(Live::number(text, value));
+            line.rebuilt = (text.len() <= MAX_FORMULA).then(|| Live::number(text, value));
         }
         line
     }

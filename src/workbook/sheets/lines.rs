@@ -78,6 +78,8 @@ pub(super) struct Line {
     pub relative: bool,
     /// A recorded text has to stand in the cell as it is; else any text will do.
     pub exact: bool,
+    /// The cell's formula has no result until a spreadsheet program computes it: neither has the line.
+    pub awaits: bool,
     /// How the numbers look.
     pub style: Style,
 }
@@ -96,6 +98,7 @@ impl Line {
             allowed: FACTOR_TOLERANCE,
             relative: true,
             exact: false,
+            awaits: false,
             style: Style::Factor,
         }
     }
@@ -122,15 +125,17 @@ impl Line {
     /// The largest difference from what was recorded, and whether it is allowed. None where a value
     /// that should be a number is none.
     fn judge(&self) -> (Option<f64>, bool) {
+        // The rest of the line speaks for itself until the cell has a result.
+        let now = self.now.as_ref().filter(|_| !self.awaits);
         let Cached::Number(recorded) = self.recorded.value else {
             let stands = |now: &Live| match &now.value {
                 Cached::Text(_) if self.exact => now.value == self.recorded.value,
                 value => matches!(value, Cached::Text(_)),
             };
-            return (None, self.now.as_ref().is_none_or(stands));
+            return (None, now.is_none_or(stands));
         };
         let mut worst = 0.0_f64;
-        for live in self.rebuilt.iter().chain(&self.now) {
+        for live in self.rebuilt.iter().chain(now) {
             let Cached::Number(x) = live.value else { return (None, false) };
             let relative = self.relative && recorded != 0.0;
             let difference = if relative { (x / recorded - 1.0).abs() } else { (x - recorded).abs() };
@@ -166,7 +171,8 @@ impl Line {
         sheet.number(row, col::ALLOWED, Style::Difference, self.allowed);
         let cell = |column| crate::references::Cell { row, col: column }.to_string();
         let (difference, agrees) = self.judge();
-        let result = Cached::Text(if agrees { AGREES } else { DIFFERS }.to_owned());
+        let pending = |result: Cached| if self.awaits { Cached::None } else { result };
+        let result = pending(Cached::Text(if agrees { AGREES } else { DIFFERS }.to_owned()));
         let quote = |yes: &str, no: &str| format!("\"{yes}\",\"{no}\"");
         if !matches!(self.recorded.value, Cached::Number(_)) {
             let now = cell(col::NOW);
@@ -198,7 +204,7 @@ impl Line {
             [] => "0".to_owned(),
             terms => format!("IFERROR(MAX({}),\"not a number\")", terms.join(",")),
         };
-        let shown = difference.map_or_else(|| Cached::Text("not a number".into()), Cached::Number);
+        let shown = pending(difference.map_or_else(|| Cached::Text("not a number".into()), Cached::Number));
         sheet.formula(row, col::DIFFERENCE, Style::Difference, text, shown);
         let difference = cell(col::DIFFERENCE);
         let within = format!("IF({difference}<={},{})", cell(col::ALLOWED), quote(AGREES, DIFFERS));

@@ -1,6 +1,6 @@
 //! hence's own sheets: Discounting, which the filled formulas refer to, and the audit sheets.
 
-mod changes;
+pub(crate) mod changes;
 mod charts;
 mod checks;
 mod coverage;
@@ -12,6 +12,7 @@ mod rebuild;
 mod second_route;
 mod settings;
 mod summary;
+mod tails;
 mod targets;
 
 use hence_core::CAUTION;
@@ -95,6 +96,8 @@ pub struct TargetCell {
     pub filled: bool,
     /// Allowed absolute difference.
     pub tolerance: f64,
+    /// A formula whose result is not known until a spreadsheet program computes it.
+    pub awaits: bool,
 }
 
 /// What a person had typed on an audit sheet of an earlier fill, carried over.

@@ -138,11 +138,12 @@ impl Rebuilt {
     }
 
     /// The first row of a part: its weight stands in column C.
-    fn row(&self, part: usize) -> u32 {
+    pub fn row(&self, part: usize) -> u32 {
         self.top + self.parts[part]
     }
 
-    fn term(&self, k: usize, form: &Form, t: &str) -> String {
+    /// The factor of one part at the offset `t`.
+    pub fn term(&self, k: usize, form: &Form, t: &str) -> String {
         let top = self.row(k);
         match form {
             Form::Rate { continuous, .. } => {

@@ -136,6 +136,11 @@ impl Route {
         self.parts.iter().zip(&self.chains).map(|((w, form), chain)| w * form.factor(t, chain)).sum()
     }
 
+    /// The factor of one part at offset `t`, without its weight.
+    pub fn part_factor(&self, part: usize, t: f64) -> f64 {
+        self.parts[part].1.factor(t, &self.chains[part])
+    }
+
     /// The yearly chain of a part, from year 0; empty where it is not a chain.
     pub fn chain(&self, part: usize) -> &[f64] {
         &self.chains[part]

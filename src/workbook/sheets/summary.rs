@@ -68,11 +68,23 @@ fn verdict(sheet: &mut Sheet, input: &AuditInput<'_>, checks: &Checks, coverage:
     let cell = |row| Cell { row, col: 1 }.to_string();
     let total = checks.count + coverage.valued;
     let wrong = checks.differing.len();
+    // Where formulas wait for their results, so does the verdict: a spreadsheet program computes it.
+    let pending = |result: Cached| if checks.awaiting > 0 { Cached::None } else { result };
     sheet.text(COUNT, 0, Style::Text, "Checks and ties of totals");
-    sheet.formula(COUNT, 1, Style::Year, format!("{all}+{ties}"), Cached::Number(total as f64));
+    sheet.formula(COUNT, 1, Style::Year, format!("{all}+{ties}"), pending(Cached::Number(total as f64)));
     sheet.text(COUNT_DIFFERS, 0, Style::Text, "of which differ");
-    sheet.formula(COUNT_DIFFERS, 1, Style::Year, format!("{differs}+{apart}"), Cached::Number(wrong as f64));
+    sheet.formula(
+        COUNT_DIFFERS,
+        1,
+        Style::Year,
+        format!("{differs}+{apart}"),
+        pending(Cached::Number(wrong as f64)),
+    );
     let text = match checks.differing.first() {
+        None if checks.awaiting > 0 => format!(
+            "awaits recalculation: {} of {total} checks are of formulas that have no result yet; the others agree",
+            checks.awaiting
+        ),
         None => VERDICT_AGREES.to_owned(),
         Some(first) => format!("{DIFFERS}: {wrong} of {total} checks, first at {first}"),
     };
@@ -93,7 +105,7 @@ fn verdict(sheet: &mut Sheet, input: &AuditInput<'_>, checks: &Checks, coverage:
         m = cell(COUNT),
     );
     sheet.text(VERDICT, 0, Style::Verdict, "Verdict");
-    sheet.formula(VERDICT, 1, Style::Verdict, formula, Cached::Text(text.clone()));
+    sheet.formula(VERDICT, 1, Style::Verdict, formula, pending(Cached::Text(text.clone())));
     text
 }
 

@@ -20,6 +20,7 @@ impl Maker<'_> {
         let value = match (cell.filled, cell.expected) {
             (true, Some(x)) => Cached::Number(x),
             (true, None) => Cached::Text("text".into()),
+            (false, _) if cell.awaits => Cached::None,
             (false, _) => target.held.get(cell.index).map_or(Cached::None, held),
         };
         let value = match value {
@@ -36,6 +37,7 @@ impl Maker<'_> {
             TargetRole::Ratio | TargetRole::Payback => Style::Ratio,
             _ => Style::Money,
         };
+        line.awaits = cell.awaits;
         if cell.expected.is_some() {
             let rebuilt = self.rebuilt_target(c, cell, &target.role, row);
             line.rebuilt = rebuilt.filter(|live| matches!(live.value, Cached::Number(x) if x.is_finite()));

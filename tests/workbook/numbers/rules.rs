@@ -3,7 +3,6 @@
 use hence_core::Catalogue;
 use hence_workbook::check::check;
 use hence_workbook::fill::{FillRequest, Filled, fill};
-use hence_workbook::package::Package;
 use hence_workbook::problem::Severity;
 use hence_workbook::sheets::VERDICT_AGREES;
 
@@ -84,10 +83,10 @@ fn a_basis_from_the_command_line_leaves_a_workbook_that_declares_what_was_used()
     let folder = tempfile::tempdir().unwrap();
     let path = folder.path().join("told.xlsx");
     std::fs::write(&path, &told.bytes).unwrap();
-    let check = check(&Package::open(&path).unwrap(), &[], &Catalogue::builtin()).unwrap();
-    assert!(check.agrees(), "{:?}", check.differences);
-    // Filled again, nothing differs either.
     let package = hence_workbook::package::Package::open(&path).unwrap();
+    let report = check(&package, &[], &Catalogue::builtin()).unwrap();
+    assert!(report.agrees(), "{:?}", report.differences);
+    // Filled again, nothing differs either.
     let again = fill(&package, &FillRequest::default(), &Catalogue::builtin()).unwrap();
     close(again.report.options[0].absolute.npv, told.report.options[0].absolute.npv);
 }
@@ -327,10 +326,7 @@ fn a_companion_keeps_the_timing_and_one_basis_for_all_options() {
 fn check_compares_what_formulas_show_and_takes_no_error_for_a_missing_result() {
     let differing = |held: &str| {
         let small = plan("0.04", held, "");
-        let folder = tempfile::tempdir().unwrap();
-        let path = folder.path().join("held.xlsx");
-        std::fs::write(&path, small.bytes()).unwrap();
-        let report = check(&Package::open(&path).unwrap(), &[], &Catalogue::builtin()).unwrap();
+        let report = check(&small.open().0, &[], &Catalogue::builtin()).unwrap();
         let found: Vec<String> = report.differences.iter().map(|d| d.found.clone()).collect();
         (found, report.problems.iter().filter(|p| p.code == "awaits-recalculation").count())
     };
@@ -339,4 +335,46 @@ fn check_compares_what_formulas_show_and_takes_no_error_for_a_missing_result() {
     assert_eq!(differing("B10: #DIV/0!"), (vec!["#DIV/0!".to_owned()], 0));
     assert_eq!(differing("B5: 0 | 0 | 0\nB10: 'n/a"), (vec![], 0));
     assert_eq!(differing("B5: 0 | 0 | 0\nB10: 1.5"), (vec!["1.5".to_owned()], 0));
+}
+
+#[test]
+fn formulas_that_depend_on_what_is_filled_wait_for_a_spreadsheet_program() {
+    // The analyst's own net present value over a factor row that was blank: its stored 0 is from before the fill.
+    let small = plan("0.04", "B9: =SUMPRODUCT(B6:D6-B5:D5,B7:D7)>0", "");
+    let out = filled(&small);
+    assert_eq!(warnings(&out), ["awaits-recalculation"]);
+    assert!(out.report.verdict.starts_with("awaits recalculation: 1 of "), "{}", out.report.verdict);
+    // Factors that count with the basis cell, which the command line changes.
+    let factors = "B7: =(1+$B$2)^-0>1 | =(1+$B$2)^-1>0.961538461538461 | =(1+$B$2)^-2>0.924556213017751";
+    let own = filled(&plan("0.04", factors, ""));
+    assert_eq!((warnings(&own).len(), own.report.ticked), (0, 3));
+    let told = run(&plan("0.04", factors, ""), &basis("3%")).unwrap();
+    let found = warnings(&told);
+    assert_eq!(found, ["basis-overridden", "awaits-recalculation"]);
+    assert!(told.report.problems.iter().all(|p| p.severity < Severity::Error));
+    // A flow that counts with a filled cell was read before the fill.
+    let circular = filled(&plan("0.04", "B5: 100 | =C7*100>0 | 0", ""));
+    assert!(warnings(&circular).contains(&"flow-follows"), "{:?}", warnings(&circular));
+}
+
+#[test]
+fn formulas_of_an_earlier_fill_are_replaced_where_more_is_said_since() {
+    let small = plan("0.04", "F1: 'k", "hence_pv B14:D14");
+    let first = filled(&small);
+    let package = hence_workbook::package::Package::from_bytes("again.xlsx", first.bytes).unwrap();
+    let roles = vec![("unit_works".to_owned(), "Plan!F1".to_owned())];
+    let request = FillRequest { roles, ..basis("5%") };
+    let again = fill(&package, &request, &Catalogue::builtin()).unwrap_or_else(|error| panic!("{error}"));
+    assert_eq!(again.report.verdict, VERDICT_AGREES);
+    assert!(again.report.problems.iter().all(|p| p.severity < Severity::Error));
+    close(number_at(&cells(&again.bytes), "Plan", "B14").unwrap(), -100_000.0);
+    // The totals of filled rows are not held to what they were before.
+    let values = cells(&again.bytes);
+    let results: Vec<String> = values
+        .iter()
+        .filter(|((sheet, cell), _)| sheet == "Audit coverage" && cell.col == 7 && cell.row > 3)
+        .map(|(_, data)| data.to_string())
+        .collect();
+    assert_eq!(results[..2], ["agrees", "agrees"]);
+    assert!(results[2..].iter().all(|text| text.contains("follows filled cells")), "{results:?}");
 }
