@@ -126,7 +126,8 @@ pub(crate) fn measure_net(outcome: &mut ChoiceOutcome, moments: &Moments) {
 /// Mean time and era shares of the gross present values.
 pub(crate) fn measure_gross(outcome: &mut ChoiceOutcome, further: &[Further], clock: &Clock) {
     let eras = Eras::default();
-    let (mut years, mut moments): (Vec<(f64, f64)>, Vec<(f64, f64)>) = (Vec::new(), Vec::new());
+    let mut years: Vec<(f64, f64)> = Vec::new();
+    let mut moments: Vec<(f64, f64)> = Vec::new();
     for (stream, further) in outcome.streams.iter().zip(further) {
         let own = outcome.offsets.iter().zip(&stream.flows).zip(&outcome.factors);
         let own = own.map(|((t, flow), factor)| (*t, *flow, *factor));

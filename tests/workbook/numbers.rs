@@ -13,6 +13,7 @@ use hence_workbook::report::OptionReport;
 use hence_workbook::sheets::VERDICT_AGREES;
 
 mod book;
+mod curves;
 mod model;
 mod published;
 mod recalculated;

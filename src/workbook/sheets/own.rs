@@ -46,7 +46,8 @@ pub fn text_mark(text: &str) -> String {
 
 /// As [`text_mark`], of a number: to twelve digits of the fifteen that every spreadsheet program keeps when it saves.
 pub fn number_mark(number: f64) -> String {
-    let kept: f64 = format!("{number:.14e}").parse().unwrap_or(number);
+    // A program may save -0 as 0.
+    let kept: f64 = format!("{:.14e}", number + 0.0).parse().unwrap_or(number);
     format!("number {kept:.11e}")
 }
 
