@@ -32,6 +32,11 @@ pub fn money(x: f64) -> String {
     if x < 0.0 && !zero { format!("-{grouped}") } else { grouped }
 }
 
+/// A number of things: "1 cell", "2 cells".
+pub fn count(n: usize, thing: &str) -> String {
+    if n == 1 { format!("1 {thing}") } else { format!("{n} {thing}s") }
+}
+
 /// A rate as percent with up to four decimals.
 pub fn percent(x: f64) -> String {
     let text = format!("{:.4}", x * 100.0);
@@ -41,7 +46,7 @@ pub fn percent(x: f64) -> String {
 
 #[cfg(test)]
 mod tests {
-    use super::{money, percent, shortest};
+    use super::{count, money, percent, shortest};
 
     #[test]
     fn numbers_read_well() {
@@ -52,6 +57,7 @@ mod tests {
         assert_eq!(percent(0.035), "3.5%");
         assert_eq!(percent(0.1), "10%");
         assert_eq!(percent(0.0), "0%");
+        assert_eq!((count(1, "cell"), count(0, "cell")), ("1 cell".into(), "0 cells".into()));
     }
 
     #[test]

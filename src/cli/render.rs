@@ -6,7 +6,7 @@ use hence_workbook::outcome::Totals;
 use hence_workbook::problem::{Place, Problem, Severity};
 use hence_workbook::report::{OptionReport, Report};
 
-use crate::numbers::{money, percent};
+use crate::numbers::{count, money, percent};
 use crate::terminal::{Terminal, escape};
 
 /// After so many problems only a count of the rest is printed.
@@ -23,7 +23,8 @@ pub fn problems(terminal: &Terminal, file: &str, problems: &[Problem]) {
     if let Some(rest) = graver.get(MOST_PROBLEMS..).filter(|rest| !rest.is_empty()) {
         let errors = rest.iter().filter(|problem| problem.severity == Severity::Error).count();
         let severity = if errors > 0 { "error" } else { "warning" };
-        let how = format!("{} more problems, {errors} of them errors; --json lists all", rest.len());
+        let (more, errors) = (count(rest.len(), "more problem"), count(errors, "error"));
+        let how = format!("{more}, with {errors} among them; --json lists all");
         terminal.say(severity, &format!("{file}: {how}"));
     }
     let mut kinds: BTreeMap<&str, (&Problem, usize)> = BTreeMap::new();
@@ -125,9 +126,9 @@ pub fn report(input: &str, output: &str, report: &Report) -> String {
         text.push_str(&details(option));
     }
     text.push_str(&format!(
-        "\n{} cells filled, {} formulas ticked. Verdict: {}.\n{}\n",
-        report.filled,
-        report.ticked,
+        "\n{} filled, {} ticked. Verdict: {}.\n{}\n",
+        count(report.filled, "cell"),
+        count(report.ticked, "formula"),
         report.verdict,
         hence_core::CAUTION
     ));
@@ -160,7 +161,7 @@ fn increments(report: &Report, title: &str) -> String {
     let mut head = headings(title);
     head.push("Rank".to_owned());
     let mut rows = vec![head];
-    let npv = |option: &OptionReport| option.increment.map_or(0.0, |increment| increment.npv);
+    let npv = |option: &OptionReport| option.totals().npv;
     for option in &report.options {
         let Some(increment) = &option.increment else { continue };
         let mut row = totals(&option.name, increment);

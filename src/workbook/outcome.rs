@@ -66,7 +66,7 @@ pub struct ChoiceOutcome {
     pub annuity: f64,
     /// As they stand.
     pub absolute: Totals,
-    /// Less the baseline, where there is one.
+    /// Less the baseline, where there is one; nothing for the baseline itself.
     pub increment: Option<Totals>,
     /// Every internal rate of return of the net (or incremental) flows in the searched interval.
     pub irr: Vec<f64>,

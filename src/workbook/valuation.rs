@@ -32,12 +32,15 @@ pub fn value(appraisal: &Appraisal, catalogue: &Catalogue) -> Result<(Vec<Choice
     if let Some(baseline) = appraisal.baseline {
         let base = outcomes[baseline].clone();
         let base_choice = &appraisal.choices[baseline];
-        for (i, outcome) in outcomes.iter_mut().enumerate().filter(|(i, _)| *i != baseline) {
+        // The baseline's own increment is nothing, so that what stands in cells can be compared and ranked.
+        for (i, outcome) in outcomes.iter_mut().enumerate() {
             let choice = &appraisal.choices[i];
             outcome.increment = Some(increment(outcome, &base));
             measure_net(outcome, &moments[i].less(&moments[baseline]));
             measure_units(outcome, choice, Some((&base, base_choice)));
-            warn_baseline(outcome, &base, choice, base_choice, &mut problems);
+            if i != baseline {
+                warn_baseline(outcome, &base, choice, base_choice, &mut problems);
+            }
         }
     }
     for (choice, outcome) in appraisal.choices.iter().zip(&outcomes) {

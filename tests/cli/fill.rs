@@ -233,7 +233,7 @@ fn after_twenty_problems_the_rest_is_counted() {
     assert_eq!(code(&output), 1);
     let text = stderr(&output);
     assert_eq!(text.matches("(text-value)").count(), 20, "{text}");
-    assert!(text.contains("5 more problems, 5 of them errors"), "{text}");
+    assert!(text.contains("5 more problems, with 5 errors among them"), "{text}");
     let document = json(&run(&["fill", book.arg(), "--json"]));
     assert_eq!(document["books"][0]["problems"].as_array().unwrap().len() - 25, 3, "JSON lists all");
 }

@@ -16,7 +16,7 @@ fn a_formula_that_agrees_is_ticked_and_left() {
     let book = with_factor(formula, 1.0 / 1.035);
     let output = run(&["fill", book.arg()]);
     assert_eq!(code(&output), 0, "{}", stderr(&output));
-    assert!(stdout(&output).contains("1 formulas ticked"), "{}", stdout(&output));
+    assert!(stdout(&output).contains("1 formula ticked"), "{}", stdout(&output));
     let filled = book.beside("plan.audited.xlsx");
     assert_eq!(cell(&filled, "Appraisal", "C28").formula.as_deref(), Some(formula));
 }

@@ -7,4 +7,5 @@ mod npv;
 mod omb;
 mod ramsey;
 mod schedules;
+mod second_opinion;
 mod tables;

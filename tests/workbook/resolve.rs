@@ -87,7 +87,7 @@ fn years_may_run_down_a_column() {
     assert_eq!(read.choices[0].basis.value, "0.035");
     // The factors are still blank.
     let rows: Vec<_> = read.coverage.iter().map(|row| (row.heading.as_str(), row.total)).collect();
-    assert_eq!(rows, [("Works", 6.0), ("", 0.0)]);
+    assert_eq!(rows, [("Works", 6.0), ("Factor", 0.0)]);
 }
 
 #[test]

@@ -107,7 +107,9 @@ fn text(input: &str, report: &CheckReport) -> String {
     }
     let verdict = match (report.differences.len(), report.agree) {
         (0, 0) => "nothing was filled, so nothing was compared".to_owned(),
+        (0, 1) => "the one filled cell agrees with the declared basis".to_owned(),
         (0, agree) => format!("all {agree} filled cells agree with the declared basis"),
+        (1, agree) => format!("1 cell differs, {agree} agree"),
         (differ, agree) => format!("{differ} cells differ, {agree} agree"),
     };
     text.push_str(&format!("{input}: {verdict}\n"));

@@ -1,6 +1,6 @@
 //! Coverage: every numeric row that runs along the years, and whether it was valued.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 use hence_core::sum;
 
@@ -50,10 +50,8 @@ pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
     for sheet in order {
         let Some(bands) = bands.get(&sheet) else { continue };
         for band in bands {
-            let named = |index: u32| {
-                roles.contains_key(&SheetRange { sheet: sheet.clone(), range: band.line(index) })
-            };
-            let lines = match lines(context, &sheet, *band, &targets, named) {
+            let named = roles.keys().filter(|at| at.sheet == sheet).filter_map(|at| band.index(&at.range));
+            let lines = match lines(context, &sheet, *band, &targets, named.collect()) {
                 Ok(lines) => lines,
                 Err(error) => {
                     context.problems.extend(error.problems().iter().cloned());
@@ -98,6 +96,12 @@ impl Band {
         } else {
             Range { first: Cell { row: index, col: first }, last: Cell { row: index, col: last } }
         }
+    }
+
+    /// The row that cells are, where they are exactly one row of the band.
+    fn index(self, range: &Range) -> Option<u32> {
+        let index = if self.down { range.first.col } else { range.first.row };
+        (self.line(index) == *range).then_some(index)
     }
 
     /// A cell as (row along the years, position across it).
@@ -152,20 +156,21 @@ fn lines(
     sheet: &str,
     band: Band,
     targets: &[SheetRange],
-    named: impl Fn(u32) -> bool,
+    named: BTreeSet<u32>,
 ) -> crate::problem::Result<BTreeMap<u32, Line>> {
     let targets: Vec<Range> = targets.iter().filter(|at| at.sheet == sheet).map(|at| at.range).collect();
     let filled = |cell: Cell| targets.iter().any(|range| range.contains(cell));
     let mut lines: BTreeMap<u32, Line> = BTreeMap::new();
     context.sheets.visit(sheet, |cell, value| {
         let (index, across) = band.turned(cell);
+        if filled(cell) {
+            return;
+        }
         if lines.len() >= MAX_ROWS_SEEN && !lines.contains_key(&index) {
             return;
         }
         match value {
-            Value::Number(number)
-                if number.is_finite() && (band.first..=band.last).contains(&across) && !filled(cell) =>
-            {
+            Value::Number(number) if number.is_finite() && (band.first..=band.last).contains(&across) => {
                 let line = lines.entry(index).or_default();
                 line.numbers.push(number);
             }
@@ -181,7 +186,10 @@ fn lines(
             _ => {}
         }
     })?;
-    lines.retain(|&index, line| !line.numbers.is_empty() || named(index));
+    for index in &named {
+        lines.entry(*index).or_default();
+    }
+    lines.retain(|index, line| !line.numbers.is_empty() || named.contains(index));
     Ok(lines)
 }
 

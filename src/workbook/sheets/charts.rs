@@ -126,8 +126,8 @@ fn table_chart(
 
 fn flat_rates(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes: &mut Vec<ChartFinish>) {
     let over = input.outcomes.iter().any(|o| o.increment.is_some());
-    // The baseline itself has no increment: its column says so, and it is no line of the chart.
-    let alone = input.appraisal.baseline.filter(|&b| over && input.outcomes[b].increment.is_none());
+    // The baseline's own increment is nothing: it is no line of the chart.
+    let flat = input.appraisal.baseline.filter(|_| over);
     let title = if over {
         "Net present value over the baseline, by flat rate"
     } else {
@@ -154,20 +154,19 @@ fn flat_rates(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes
     }
     for (c, column) in table.iter().enumerate() {
         let name = &input.appraisal.choices[c].name;
-        let heading = if alone == Some(c) { format!("{name} (as it stands)") } else { name.clone() };
-        sheet.text(top - 1, c as u32 + 1, Style::Heading, heading);
+        sheet.text(top - 1, c as u32 + 1, Style::Heading, name);
         for (k, value) in column.iter().enumerate() {
             if let Some(x) = value.filter(|x| x.is_finite()) {
                 sheet.number(top + k as u32, c as u32 + 1, Style::Money, x);
             }
         }
     }
-    table_chart(sheet, input, (TOPS[2], top, RATES as u32), ChartKind::Lines, title, alone);
+    table_chart(sheet, input, (TOPS[2], top, RATES as u32), ChartKind::Lines, title, flat);
     let range = Some((0.0, 0.1));
     let base = finish(title, "Flat rate a year", "Net present value", "0%", "#,##0");
     finishes.push(ChartFinish { markers: true, x_range: range, ..base });
     *row = top + RATES as u32 + 1;
-    for (c, column) in table.iter().enumerate() {
+    for (c, column) in table.iter().enumerate().filter(|(c, _)| flat != Some(*c)) {
         let text = declared(input, c, &rates, column);
         sheet.paragraph(*row, 0, 6, Style::Wrapped, text);
         *row += 1;

@@ -46,9 +46,9 @@ pub fn text_mark(text: &str) -> String {
 
 /// As [`text_mark`], of a number: to twelve digits of the fifteen that every spreadsheet program keeps when it saves.
 pub fn number_mark(number: f64) -> String {
-    // A program may save -0 as 0.
-    let kept: f64 = format!("{:.14e}", number + 0.0).parse().unwrap_or(number);
-    format!("number {kept:.11e}")
+    let kept: f64 = format!("{number:.14e}").parse().unwrap_or(number);
+    // Some programs keep the sign of a zero, others do not.
+    format!("number {:.11e}", kept + 0.0)
 }
 
 /// As [`text_mark`], of a formula, which other programs write in their own way: that there is one.
@@ -112,6 +112,7 @@ mod tests {
         // Fifteen digits of a number are what is left of it in some programs.
         assert_eq!(number_mark(0.095_957_635_160_916_61), number_mark(0.095_957_635_160_916_6));
         assert_eq!(number_mark(1_234.564_999_999_999_9), number_mark(1_234.565));
+        assert_eq!(number_mark(-0.0), number_mark(0.0));
         assert_ne!(number_mark(0.035), number_mark(0.036));
         // SHA-256 of nothing, FIPS 180-4 test vector.
         assert_eq!(digest(&[]), "e3b0c44298fc1c149afbf4c8996fb92427ae41e4649b934ca495991b7852b855");
