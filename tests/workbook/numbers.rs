@@ -47,7 +47,7 @@ fn near(found: f64, expected: f64, size: f64, what: &str) {
     assert!((found - expected).abs() <= allowed, "{what}: found {found}, expected {expected}");
 }
 
-/// What the second model expects of an option, over the baseline where there is one.
+/// What the second model expects of an option, over the baseline where there is one (nothing for the baseline itself).
 struct Expected {
     own: Outcome,
     pv_costs: f64,
@@ -86,7 +86,7 @@ fn expected(book: &Book, c: usize) -> Expected {
         effect: own.effect,
         own,
     };
-    if let Some(baseline) = book.baseline.filter(|b| *b != c) {
+    if let Some(baseline) = book.baseline {
         let other = &book.choices[baseline];
         let base = other.value();
         let (flows, values) = moments(other, &base, -1.0);
