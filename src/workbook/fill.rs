@@ -7,6 +7,7 @@ use hence_core::{Basis, Catalogue, Compounding, Spec};
 use sha2::{Digest, Sha256};
 
 use crate::appraisal::{Appraisal, Given, Setting, Stated};
+use crate::companions::companions;
 use crate::follow;
 use crate::graft::{Graft, graft};
 use crate::layout::Layout;
@@ -20,7 +21,7 @@ use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::{Cell, SheetRange};
-use crate::report::{Companion, Report, option_reports};
+use crate::report::{Report, option_reports};
 use crate::resolve::{Options, resolve};
 use crate::sheets::{AuditInput, Meta, SheetNames, VERDICT_AGREES, build};
 use crate::stale;
@@ -394,63 +395,6 @@ fn foreign_sheets(book: &Workbook, previous: &[OwnSheet]) -> Vec<String> {
     let own: BTreeSet<usize> = previous.iter().map(|sheet| sheet.index).collect();
     let sheets = book.sheets.iter().enumerate();
     sheets.filter(|(i, _)| !own.contains(i)).map(|(_, sheet)| sheet.name.clone()).collect()
-}
-
-/// Every option again under the companion of its schedule, where years reach beyond the companion's horizon.
-///
-/// Where one option's years do, all options on that schedule are valued beside it, so that increments over the baseline
-/// stand on one basis. A companion that cannot value the workbook is a warning.
-fn companions(
-    appraisal: &Appraisal,
-    outcomes: &[ChoiceOutcome],
-    catalogue: &Catalogue,
-    problems: &mut Vec<Problem>,
-) -> Vec<Option<Companion>> {
-    let reaches = |outcome: &ChoiceOutcome| {
-        let (id, beyond) = outcome.basis.companion()?;
-        let reach = outcome.offsets.iter().copied().fold(0.0, f64::max);
-        (reach > beyond).then(|| id.to_owned())
-    };
-    let wanted: BTreeSet<String> = outcomes.iter().filter_map(reaches).collect();
-    let mut beside = appraisal.clone();
-    let mut changed = vec![false; outcomes.len()];
-    let mut failed = |message: String| {
-        let problem = Problem::warning("companion", Place::default(), message);
-        problems.push(problem.hint("value the workbook on the companion schedule by itself, with --basis"));
-    };
-    for (i, (choice, outcome)) in beside.choices.iter_mut().zip(outcomes).enumerate() {
-        if outcome.basis.companion().is_none_or(|(id, _)| !wanted.contains(id)) {
-            continue;
-        }
-        match outcome.basis.beside(catalogue) {
-            Ok(Some(basis)) => {
-                choice.basis.value = basis.canonical();
-                changed[i] = true;
-            }
-            Ok(None) => {}
-            Err(error) => failed(format!("the schedule to be run beside is not known: {error}")),
-        }
-    }
-    if !changed.contains(&true) {
-        return vec![None; outcomes.len()];
-    }
-    match value(&beside, catalogue) {
-        Ok((outcomes, _)) => {
-            let make = |(outcome, changed): (&ChoiceOutcome, bool)| {
-                let id = outcome.basis.schedule().map(|schedule| schedule.id().to_owned());
-                id.filter(|_| changed).map(|id| Companion {
-                    id,
-                    words: outcome.basis.words(),
-                    totals: *outcome.totals(),
-                })
-            };
-            outcomes.iter().zip(changed).map(make).collect()
-        }
-        Err(error) => {
-            failed(format!("the schedule to be run beside cannot value the workbook: {error}"));
-            vec![None; outcomes.len()]
-        }
-    }
 }
 
 fn meta(package: &Package, outcomes: &[ChoiceOutcome], request: &FillRequest) -> Meta {

@@ -7,6 +7,7 @@ pub mod appraisal;
 pub mod check;
 mod clock;
 pub mod codes;
+mod companions;
 pub mod fill;
 mod follow;
 pub mod formulas;

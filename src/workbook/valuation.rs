@@ -251,7 +251,8 @@ fn value_stream(
     base_year: Option<i32>,
 ) -> Result<(StreamOutcome, Further)> {
     let scale = stream.sign * stream.unit * (1.0 + stream.uplift.value);
-    let mut flows: Vec<f64> = stream.raw.iter().map(|x| x * scale).collect();
+    // Adding zero turns -0 into 0, which no cell should show.
+    let mut flows: Vec<f64> = stream.raw.iter().map(|x| x * scale + 0.0).collect();
     let last = flows.len() - 1;
     let last_flow = flows[last];
     if let Some(residual) = &stream.residual {
@@ -352,7 +353,7 @@ fn net_flows(choice: &Choice, streams: &[StreamOutcome], years: usize) -> Vec<f6
                     outcome.flows[i] * (above - below)
                 })
                 .collect();
-            sum(&terms)
+            sum(&terms) + 0.0
         })
         .collect()
 }

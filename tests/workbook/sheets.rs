@@ -482,3 +482,17 @@ fn the_sheets_can_be_grafted_and_a_second_time_gives_the_same_bytes() {
     assert_eq!(book.matches("name=\"hence_digest\"").count(), 6);
     assert!(book.contains("name=\"hence_verdict\""));
 }
+
+#[test]
+fn a_wrong_value_of_what_follows_the_last_year_is_found_by_the_second_route() {
+    let case = case("3.5%", END, Labels::Years, Direction::Across, true);
+    let appraisal = appraisal(&case);
+    let mut outcomes = outcomes(&case, &appraisal);
+    let flood = &mut outcomes[1].streams[2];
+    assert!(flood.pv_tail > 0.0);
+    flood.pv += 1e-6 * flood.pv_tail;
+    flood.pv_tail *= 1.0 + 1e-6;
+    let audit = audit_of(appraisal, outcomes, &[]);
+    let verdict = &audit.composed.built.verdict;
+    assert!(verdict.starts_with("differs: 1 of "), "{verdict}");
+}

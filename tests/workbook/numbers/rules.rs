@@ -378,3 +378,19 @@ fn formulas_of_an_earlier_fill_are_replaced_where_more_is_said_since() {
     assert_eq!(results[..2], ["agrees", "agrees"]);
     assert!(results[2..].iter().all(|text| text.contains("follows filled cells")), "{results:?}");
 }
+
+#[test]
+fn costs_entered_negative_leave_no_minus_zero() {
+    let small =
+        plan("0.04", "B5: -100 | 0 | 0\nF1: 'costs negative", "hence_signs F1, hence_pv_works B14:D14");
+    let out = fill(
+        &small.open().0,
+        &FillRequest { formulas: false, ..FillRequest::default() },
+        &Catalogue::builtin(),
+    );
+    let values = cells(&out.unwrap().bytes);
+    for cell in ["C14", "D14"] {
+        let found = number_at(&values, "Plan", cell).unwrap();
+        assert!(found == 0.0 && found.is_sign_positive(), "{cell}: {found}");
+    }
+}
