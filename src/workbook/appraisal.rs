@@ -215,7 +215,7 @@ pub struct Covered {
     pub roles: Vec<String>,
     /// The undiscounted sum of its numbers.
     pub total: f64,
-    /// Its numbers are filled or follow filled cells, so that no total could be taken before.
+    /// Its numbers are results, or follow filled cells, so that their total before the fill says nothing.
     pub follows: bool,
 }
 

@@ -8,22 +8,23 @@ use sha2::{Digest, Sha256};
 
 use crate::appraisal::{Appraisal, Given, Setting, Stated};
 use crate::companions::companions;
+use crate::follow;
 use crate::graft::{Graft, graft};
 use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
-use crate::package::{Package, may_write, same_file, write_atomically};
+use crate::package::{Changes, Package, may_write, same_file, write_atomically};
 use crate::patch::{CellWrite, patch_sheet};
 use crate::plan::{Plan, Stale, Ways, plan_targets};
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::reading::{ReadCell, Sheets, Value};
-use crate::references::SheetRange;
+use crate::references::{Cell, SheetRange};
 use crate::report::{Report, option_reports};
 use crate::resolve::{Options, resolve};
-use crate::sheets::{AuditInput, Meta, SheetNames, build};
-use crate::stale::{self, Dependents};
+use crate::sheets::{AuditInput, Meta, SheetNames, VERDICT_AGREES, build};
+use crate::stale;
 use crate::valuation::{from_core, value};
 use crate::verify::{Expected, verify};
 
@@ -147,15 +148,15 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         dependents.cells.iter().filter(|(sheet, _)| !previous.iter().any(|own| own.index == **sheet));
     let stale: Stale =
         foreign.map(|(sheet, cells)| (book.sheets[*sheet].name.clone(), cells.clone())).collect();
-    let waits = |at: &SheetRange| stale.get(&at.sheet).is_some_and(|cells| cells.contains(&at.range.first));
-    if plan.cells.iter().any(|cell| !cell.filled && waits(&cell.at)) {
+    if plan.cells.iter().any(|cell| !cell.filled && follow::any(&stale, &cell.at)) {
         // Formulas left in targets that depend on what is written: what they show is from before.
         plan = plan_with(&stale)?;
     }
     problems.append(&mut plan.problems);
     state(&mut appraisal, &plan, package, &book)?;
-    follow(&mut appraisal, &book, &written, &dependents, &mut problems);
+    follow::mark(&mut appraisal, &stale, &written, &mut problems);
     problems.extend(dependents.warnings);
+    let unknown = follow::unknown(&appraisal, &stale, &plan.cells);
     for (name, cells) in stale {
         let writes = plan.writes.entry(name).or_default();
         for cell in cells {
@@ -172,18 +173,11 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         cells: &plan.cells,
         changes: &plan.changes,
         problems: &problems,
+        companions: &companions,
         carried: &carried,
         differs: &differs(),
     };
     let built = build(&input, &layout)?;
-    let mut patched: BTreeMap<String, Vec<u8>> = BTreeMap::new();
-    for (name, writes) in &plan.writes {
-        let Some(index) = book.sheet_index(name) else { continue };
-        let part = &book.sheets[index].part;
-        let xml = package.part(part)?.unwrap_or_default();
-        let new = patch_sheet(&xml, writes).map_err(|error| in_sheet(error, name))?;
-        patched.insert(part.clone(), new);
-    }
     let ours = Package::from_bytes("audit.xlsx", built.bytes)?;
     let leaving: Vec<String> = previous.iter().map(|sheet| sheet.name.clone()).collect();
     let grafted = graft(
@@ -197,8 +191,18 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         },
     )?;
     let mut changes = grafted.changes;
-    changes.replace.extend(patched);
-    let bytes = package.write(&changes)?;
+    let mut verdict = built.verdict;
+    patch(&mut changes, package, &book, &plan.writes)?;
+    let mut bytes = package.write(&changes)?;
+    if !unknown.is_empty() {
+        let made = Package::from_bytes(package.file_name(), bytes)?;
+        follow::forget(&made, &unknown, &grafted.sheets, &mut plan.writes, &mut changes)?;
+        patch(&mut changes, package, &book, &plan.writes)?;
+        bytes = package.write(&changes)?;
+        if verdict == VERDICT_AGREES {
+            verdict = follow::AWAITS.to_owned();
+        }
+    }
     changes.forget_contents();
     verify(
         package,
@@ -206,14 +210,25 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         &Expected { changes: &changes, writes: &plan.writes, own_sheets: &grafted.sheets },
     )?;
     let options = option_reports(&appraisal, &outcomes, &companions);
-    let report = Report {
-        options,
-        problems,
-        filled: plan.filled,
-        ticked: plan.ticked,
-        verdict: built.verdict.clone(),
-    };
+    let report = Report { options, problems, filled: plan.filled, ticked: plan.ticked, verdict };
     Ok(Filled { bytes, report })
+}
+
+/// The sheets with what is written into them.
+fn patch(
+    changes: &mut Changes,
+    package: &Package,
+    book: &Workbook,
+    writes: &BTreeMap<String, BTreeMap<Cell, CellWrite>>,
+) -> Result<()> {
+    for (name, writes) in writes {
+        let Some(index) = book.sheet_index(name) else { continue };
+        let part = &book.sheets[index].part;
+        let xml = package.part(part)?.unwrap_or_default();
+        let new = patch_sheet(&xml, writes).map_err(|error| in_sheet(error, name))?;
+        changes.replace.insert(part.clone(), new);
+    }
+    Ok(())
 }
 
 /// The basis that the workbook itself declares must be OLD in every option.
@@ -335,40 +350,6 @@ fn state(appraisal: &mut Appraisal, plan: &Plan, package: &Package, book: &Workb
         }
     }
     Ok(())
-}
-
-/// Marks the rows of the coverage whose numbers follow filled cells, and warns of flows that do: they were valued as they
-/// stood before.
-fn follow(
-    appraisal: &mut Appraisal,
-    book: &Workbook,
-    written: &[SheetRange],
-    dependents: &Dependents,
-    problems: &mut Vec<Problem>,
-) {
-    let depends = |at: &SheetRange| {
-        let sheet = book.sheet_index(&at.sheet);
-        let cells = sheet.and_then(|index| dependents.cells.get(&index));
-        cells.is_some_and(|cells| {
-            cells.range(at.range.first..=at.range.last).any(|&cell| at.range.contains(cell))
-        })
-    };
-    for row in &mut appraisal.coverage {
-        let filled =
-            |cell: &SheetRange| cell.sheet == row.at.sheet && row.at.range.contains(cell.range.first);
-        row.follows = written.iter().any(filled) || depends(&row.at);
-    }
-    let mut seen = BTreeSet::new();
-    for stream in appraisal.choices.iter().flat_map(|choice| &choice.streams) {
-        if depends(&stream.at) && seen.insert(stream.at.clone()) {
-            let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
-            let message =
-                "its formulas depend, or may depend, on cells that are filled: it was valued as it stood";
-            problems.push(Problem::warning("flow-follows", place, message).hint(
-                "open the output, let it recalculate, look at the verdict, and fill it again if it differs",
-            ));
-        }
-    }
 }
 
 /// Writes into a cell that was read, unless it holds a formula.

@@ -9,6 +9,7 @@ mod clock;
 pub mod codes;
 mod companions;
 pub mod fill;
+mod follow;
 pub mod formulas;
 pub mod graft;
 pub mod layout;

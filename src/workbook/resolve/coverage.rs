@@ -61,6 +61,7 @@ pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
             covered.extend(lines.into_iter().filter_map(|(index, line)| {
                 let at = SheetRange { sheet: sheet.clone(), range: band.line(index) };
                 let roles = roles.get(&at).cloned().unwrap_or_default();
+                let is_target = targets.contains(&at);
                 let after_years = band.years.is_none_or(|years| index > years);
                 let wanted = !roles.is_empty() || line.numbers.len() > usize::from(!after_years);
                 (wanted && Some(index) != band.years).then(|| Covered {
@@ -68,7 +69,7 @@ pub(super) fn coverage(context: &mut Context, built: &Built) -> Vec<Covered> {
                     heading: line.heading,
                     roles,
                     total: sum(&line.numbers),
-                    follows: false,
+                    follows: is_target,
                 })
             }));
         }

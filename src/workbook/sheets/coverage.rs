@@ -59,7 +59,7 @@ fn row(sheet: &mut Sheet, at: u32, covered: &Covered) {
     sheet.text(at, 2, Style::Wrapped, role);
     if covered.follows {
         // What it came to before says nothing of what it comes to now.
-        let text = if valued { "filled, or follows filled cells" } else { "follows filled cells" };
+        let text = if valued { "a result, or follows filled cells" } else { "follows filled cells" };
         sheet.text(at, 7, Style::Wrapped, text);
         return;
     }

@@ -246,3 +246,48 @@ pub fn options() -> Small {
         .sheet("The wall's end", &wall)
         .own_names(&format!("{common}, hence_effect_homes D5:D24"))
 }
+
+/// What hence can say of a workbook whose own formulas give some of the results.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Said {
+    /// They were compared.
+    Agrees,
+    /// They were compared, and one differs.
+    Differs,
+    /// They rest on what is filled: after recalculation they agree, or not.
+    Awaits(bool),
+}
+
+/// Workbooks with formulas of the analyst's own in factor and result cells: name, workbook, what is said.
+pub fn own_formulas() -> Vec<(&'static str, Small, Said)> {
+    let flows = [-1000.0, 250.0, 300.0, 350.0, 400.0];
+    let factor = |i: i32| 1.035_f64.powi(-i);
+    let npv = |from: i32| -> f64 { flows.iter().zip(from..).map(|(x, i)| x * factor(i)).sum() };
+    let col = |i: usize| char::from(b'B' + i as u8);
+    let line = |cell: &dyn Fn(usize) -> String| (0..5).map(cell).collect::<Vec<_>>().join(" | ");
+    let years = line(&|i| (2026 + i).to_string());
+    let typed = line(&|i| flows[i].to_string());
+    let offset = line(&|i| format!("=OFFSET($H$5,0,{i})>{}", flows[i]));
+    let factors = line(&|i| format!("=1/(1+$B$2)^({}4-$B$1)>{}", col(i), factor(i as i32)));
+    let wrong = line(&|i| format!("=1/(1+$B$2)^({}4-$B$1+1)>{}", col(i), factor(i as i32 + 1)));
+    let book = |flows: &str, factors: &str, result: &str| {
+        let cells = format!(
+            "A1: 'Base | 2026\nA2: 'Rate | 0.035\nA4: 'Year | {years}\nA5: 'Net | {flows}\nA6: 'Factor | {factors}\n\
+             A7: 'Present value\nA9: 'Net present value | {result}\nH5: {typed}"
+        );
+        let names = "hence_base B1, hence_basis B2, hence_years B4:F4, hence_flow_net B5:F5, hence_factor B6:F6, \
+                     hence_pv B7:F7, hence_npv B9";
+        Small::default().sheet("Plan", &cells).names(names)
+    };
+    let direct = |from| format!("=SUMPRODUCT(B5:F5,B6:F6)>{}", npv(from));
+    vec![
+        ("own-agrees.xlsx", book(&typed, &factors, &direct(0)), Said::Agrees),
+        ("own-differs.xlsx", book(&typed, &wrong, &direct(1)), Said::Differs),
+        // The present values were blank, so that their sum was 0.
+        ("own-follows.xlsx", book(&typed, "", "=SUM(B7:F7)>0"), Said::Awaits(true)),
+        ("own-slip.xlsx", book(&typed, "", "=SUM(C7:F7)>0"), Said::Awaits(false)),
+        ("own-unsaved.xlsx", book(&typed, &factors, "=SUMPRODUCT(B5:F5,B6:F6)>"), Said::Awaits(true)),
+        // What OFFSET refers to cannot be told from its text.
+        ("own-offset.xlsx", book(&offset, &factors, ""), Said::Awaits(true)),
+    ]
+}

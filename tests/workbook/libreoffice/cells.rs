@@ -144,16 +144,23 @@ pub fn changed(bytes: &[u8], sheet: &str, writes: &[(&str, CellWrite)]) -> Vec<u
     package.write(&changes).unwrap_or_else(|error| panic!("{error}"))
 }
 
-/// The verdict cell's text.
-pub fn verdict(bytes: &[u8]) -> String {
+/// What the verdict cell, a formula, has stored.
+pub fn stored_verdict(bytes: &[u8]) -> Stored {
     let package = package(bytes);
     let book = Workbook::read(&package).expect("a workbook");
     let name = book.find_name("hence_verdict", None).expect("the verdict's name");
     let hence_workbook::references::NameTarget::Cells(at) = book.resolve(name) else {
         panic!("the verdict's name is no cell")
     };
-    match cells(bytes).get(&(at.sheet.clone(), at.range.first)) {
-        Some(FileCell { formula: true, value: Stored::Text(text) }) => text.clone(),
+    let cell = cells(bytes).remove(&(at.sheet.clone(), at.range.first)).expect("the verdict's cell");
+    assert!(cell.formula, "the verdict is live");
+    cell.value
+}
+
+/// The verdict cell's text.
+pub fn verdict(bytes: &[u8]) -> String {
+    match stored_verdict(bytes) {
+        Stored::Text(text) => text,
         other => panic!("the verdict cell holds {other:?}"),
     }
 }
