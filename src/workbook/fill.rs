@@ -173,6 +173,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         cells: &plan.cells,
         changes: &plan.changes,
         problems: &problems,
+        companions: &companions,
         carried: &carried,
         differs: &differs(),
     };

@@ -38,7 +38,10 @@ pub fn value(appraisal: &Appraisal, catalogue: &Catalogue) -> Result<(Vec<Choice
             outcome.increment = Some(increment(outcome, &base));
             measure_net(outcome, &moments[i].less(&moments[baseline]));
             measure_units(outcome, choice, Some((&base, base_choice)));
-            if i != baseline {
+            if i == baseline {
+                // Nothing is never paid back, and never owed.
+                outcome.payback = Payback::default();
+            } else {
                 warn_baseline(outcome, &base, choice, base_choice, &mut problems);
             }
         }

@@ -135,6 +135,7 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
     }];
     let differs = vec!["The sheet list names the sheets that were added.".to_owned()];
     let input = AuditInput {
+        companions: &[],
         appraisal: &appraisal,
         outcomes: &outcomes,
         names: &names,

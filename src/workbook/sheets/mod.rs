@@ -24,6 +24,7 @@ use crate::names_edit::NewName;
 use crate::outcome::ChoiceOutcome;
 use crate::problem::{Problem, Result};
 use crate::references::{Cell, SheetRange};
+use crate::report::Companion;
 use crate::writer::{self, Content, Sheet, Style};
 
 pub use own::{DIGEST, OWN, VERDICT};
@@ -140,6 +141,8 @@ pub struct AuditInput<'a> {
     pub changes: &'a [Change],
     /// Warnings and errors to list.
     pub problems: &'a [Problem],
+    /// One a choice: the same under the schedule that its body wants run beside the declared one.
+    pub companions: &'a [Option<Companion>],
     /// Notes to put back.
     pub carried: &'a [Carried],
     /// What differs in the package by design, a sentence each.

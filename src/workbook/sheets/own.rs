@@ -9,7 +9,7 @@ use crate::writer::{Content, Sheet};
 
 /// The sheet-scoped hidden name that marks a sheet as hence's own and spans what hence wrote on it.
 pub const OWN: &str = "hence_own";
-/// The sheet-scoped hidden name that keeps the [`digest`] of what hence wrote on the sheet.
+/// The sheet-scoped hidden name that keeps the digest of what hence wrote on the sheet.
 pub const DIGEST: &str = "hence_digest";
 /// The name of the verdict cell.
 pub const VERDICT: &str = "hence_verdict";

@@ -6,7 +6,7 @@ use super::checks::{Checks, counts};
 use super::coverage::{Coverage, places};
 use super::discounting::table_ref;
 use super::lines::DIFFERS;
-use super::{AuditInput, charts::era_words};
+use super::{AuditInput, charts::era_words, charts::thousands};
 use crate::appraisal::{StreamKind, TargetRole};
 use crate::formulas::{ENDLESS_IRR, NO_IRR, no_ratio, one, refer};
 use crate::layout::{Column, Layout};
@@ -207,6 +207,19 @@ impl Page {
             let text =
                 format!("{name}; ratio, annual equivalent, rates of return and payback use increments");
             self.pair("Baseline", &text);
+        }
+        for (choice, beside) in input.appraisal.choices.iter().zip(input.companions) {
+            if let Some(beside) = beside {
+                let t = &beside.totals;
+                let text = format!(
+                    "PV of benefits {}, PV of costs {}, net present value {}. {}",
+                    thousands(t.pv_benefits),
+                    thousands(t.pv_costs),
+                    thousands(t.npv),
+                    beside.words
+                );
+                self.pair(&format!("{}, beside it on {}", choice.name, beside.id), &text);
+            }
         }
         self.row += 1;
     }
