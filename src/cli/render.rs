@@ -125,6 +125,7 @@ pub fn report(input: &str, output: &str, report: &Report) -> String {
     for option in &report.options {
         text.push_str(&details(option));
     }
+    text.push_str(&not_valued(&report.not_valued));
     text.push_str(&format!(
         "\n{} filled, {} ticked. Verdict: {}.\n{}\n",
         count(report.filled, "cell"),
@@ -133,6 +134,21 @@ pub fn report(input: &str, output: &str, report: &Report) -> String {
         hence_core::CAUTION
     ));
     escape(&text)
+}
+
+/// Rows that were left out of the appraisal, so that a forgotten benefit is seen.
+fn not_valued(rows: &[String]) -> String {
+    const MOST: usize = 5;
+    if rows.is_empty() {
+        return String::new();
+    }
+    let shown = rows.iter().take(MOST).cloned().collect::<Vec<_>>().join(", ");
+    let more = if rows.len() > MOST {
+        format!(", and {} more (Audit coverage has all)", rows.len() - MOST)
+    } else {
+        String::new()
+    };
+    format!("\nNot valued: {shown}{more}.\n")
 }
 
 /// Options that share basis, base and timing.
@@ -184,6 +200,36 @@ fn totals(name: &str, totals: &Totals) -> Vec<String> {
     row
 }
 
+/// Annual equivalent, rates of return and payback, over the baseline where there is one.
+fn measures(option: &OptionReport) -> String {
+    let mut text = String::from(if option.increment.is_some() { "; over the baseline: " } else { "; " });
+    text.push_str(&match option.service_years {
+        0 => "no annual equivalent".to_owned(),
+        years => format!("annual equivalent over service years 1 to {years} from the base"),
+    });
+    let open = option.irr_unresolved.iter().map(|(low, _)| format!("perhaps {}", percent(*low)));
+    let rates: Vec<String> = option.irr.iter().map(|r| percent(*r)).chain(open).collect();
+    text.push_str(&match rates.len() {
+        _ if option.endless => ", no internal rate of return, as flows go on for ever".to_owned(),
+        0 => ", no internal rate of return between -50% and 100%".to_owned(),
+        1 => format!(", internal rate of return {}", rates[0]),
+        _ => format!(", internal rates of return {}", rates.join(", ")),
+    });
+    text.push_str(&match (option.payback.first, option.payback.last) {
+        (Some(first), Some(last)) if first == last => {
+            format!(", discounted payback {first:.1} years after the base")
+        }
+        (Some(first), Some(last)) => {
+            format!(", discounted payback first {first:.1}, for good {last:.1} years after the base")
+        }
+        (Some(first), None) => {
+            format!(", discounted payback {first:.1} years after the base, but not for good")
+        }
+        _ => ", no discounted payback".to_owned(),
+    });
+    text
+}
+
 /// What stands behind the table, a few lines an option.
 fn details(option: &OptionReport) -> String {
     let mut text = format!("{}:", option.name);
@@ -191,36 +237,12 @@ fn details(option: &OptionReport) -> String {
         text.push_str(" the baseline;");
     }
     let list = |names: &[String]| if names.is_empty() { "nothing".to_owned() } else { names.join(", ") };
-    text.push_str(&format!(
-        " above the line {}; below it {}; annual equivalent over {} service years",
-        list(&option.above),
-        list(&option.below),
-        option.service_years
-    ));
-    let open = option.irr_unresolved.iter().map(|(low, _)| format!("perhaps {}", percent(*low)));
-    let rates: Vec<String> = option.irr.iter().map(|r| percent(*r)).chain(open).collect();
-    text.push_str(&match rates.len() {
-        _ if option.endless => "; no internal rate of return, as flows go on for ever".to_owned(),
-        0 => "; no internal rate of return between -50% and 100%".to_owned(),
-        1 => format!("; internal rate of return {}", rates[0]),
-        _ => format!("; internal rates of return {}", rates.join(", ")),
-    });
-    match (option.payback.first, option.payback.last) {
-        (Some(first), Some(last)) if first == last => {
-            text.push_str(&format!("; discounted payback after {first:.1} years"));
-        }
-        (Some(first), Some(last)) => {
-            text.push_str(&format!(
-                "; discounted payback first after {first:.1}, for good after {last:.1} years"
-            ));
-        }
-        (Some(first), None) => {
-            text.push_str(&format!("; pays back after {first:.1} years, but not for good"))
-        }
-        _ => text.push_str("; no discounted payback"),
+    text.push_str(&format!(" above the line {}; below it {}", list(&option.above), list(&option.below)));
+    if !option.baseline {
+        text.push_str(&measures(option));
     }
     if let Some(mean) = option.mean_time {
-        text.push_str(&format!("; mean time {mean:.1} years"));
+        text.push_str(&format!("; mean time of gross present value {mean:.1} years"));
     }
     if let Some(value) = option.npv_per_budget {
         text.push_str(&format!("; NPV per unit of budget {value:.3}"));

@@ -210,8 +210,19 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         &Expected { changes: &changes, writes: &plan.writes, own_sheets: &grafted.sheets },
     )?;
     let options = option_reports(&appraisal, &outcomes, &companions);
-    let report = Report { options, problems, filled: plan.filled, ticked: plan.ticked, verdict };
+    let not_valued = not_valued(&appraisal);
+    let report = Report { options, problems, filled: plan.filled, ticked: plan.ticked, not_valued, verdict };
     Ok(Filled { bytes, report })
+}
+
+/// Rows of numbers along the years that no role names: heading and cells.
+fn not_valued(appraisal: &Appraisal) -> Vec<String> {
+    let rows = appraisal.coverage.iter().filter(|row| row.roles.is_empty() && !row.follows);
+    rows.map(|row| match row.heading.as_str() {
+        "" => row.at.to_string(),
+        heading => format!("{heading} ({})", row.at),
+    })
+    .collect()
 }
 
 /// The sheets with what is written into them.

@@ -98,7 +98,7 @@ pub fn carried(
     if problems.is_empty() { Ok(notes) } else { Err(problems.into()) }
 }
 
-/// The formulas that an earlier fill wrote, by place, from its list of changes.
+/// What an earlier fill wrote, by place, from its list of changes: formulas without their equals sign, numbers as text.
 ///
 /// # Errors
 /// Where that sheet cannot be read.
@@ -108,25 +108,25 @@ pub fn written(
     previous: &[OwnSheet],
     names: &SheetNames,
 ) -> Result<BTreeMap<String, String>> {
-    let mut formulas = BTreeMap::new();
+    let mut written = BTreeMap::new();
     let Some(own) = previous.iter().find(|own| kind_of(&own.name, names) == names.changes) else {
-        return Ok(formulas);
+        return Ok(written);
     };
     let at = SheetRange { sheet: own.name.clone(), range: own.used };
     let grid = Sheets::open(package, book)?.range(&at)?;
     let text = |row: u32, col: u32| match grid.get(Cell { row, col }).map(|cell| &cell.value) {
         Some(Value::Text(text)) => Some(text.clone()),
+        Some(Value::Number(x)) => Some(x.to_string()),
         _ => None,
     };
     for row in own.used.first.row..=own.used.last.row {
         let columns = (text(row, SHEET_COLUMN), text(row, CELL_COLUMN), text(row, AFTER_COLUMN));
-        if let (Some(sheet), Some(cell), Some(after)) = columns
-            && let Some(formula) = after.strip_prefix('=')
-        {
-            formulas.insert(format!("{sheet}!{cell}"), formula.to_owned());
+        if let (Some(sheet), Some(cell), Some(after)) = columns {
+            let after = after.strip_prefix('=').unwrap_or(&after).to_owned();
+            written.insert(format!("{sheet}!{cell}"), after);
         }
     }
-    Ok(formulas)
+    Ok(written)
 }
 
 /// What a cell adds to the digest of its sheet.

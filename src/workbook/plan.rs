@@ -109,10 +109,17 @@ pub fn plan_targets(
                 let awaits = stale || matches!(held, Held::Formula { value: None, shown: None, .. });
                 let cell = TargetCell { awaits: awaits && !replaceable, ..cell };
                 if replaceable {
+                    if let (Held::Number(typed), Some(x)) = (held, expected)
+                        && (typed - x).abs() > cell.tolerance
+                        && !ways.written.get(&cell.at.to_string()).is_some_and(|w| w.parse() == Ok(*typed))
+                    {
+                        kept.typed.push((cell.at.clone(), *typed));
+                    }
                     plan.filled += 1;
                     plan.write(cell.at.clone(), role_words(&target.role), words(held), write);
                     plan.cells.push(cell);
-                } else if kept.compare(held, result, &cell) {
+                } else {
+                    kept.compare(held, result, &cell);
                     plan.ticked += kept.take_tick();
                     plan.cells.push(cell);
                 }
@@ -147,21 +154,22 @@ pub fn words(held: &Held) -> String {
     }
 }
 
-/// The cells of one target that were left as they are.
+/// The cells of one target that were left as they are, and typed numbers that were not.
 #[derive(Default)]
 struct Kept {
     texts: Vec<SheetRange>,
+    typed: Vec<(SheetRange, f64)>,
     waiting: Vec<SheetRange>,
     differing: Vec<(SheetRange, String, Cached, Option<f64>)>,
     fresh_tick: bool,
 }
 
 impl Kept {
-    /// Compares one cell; true where it enters the audit's checks.
-    fn compare(&mut self, held: &Held, expected: &Cached, cell: &TargetCell) -> bool {
+    /// Compares one cell.
+    fn compare(&mut self, held: &Held, expected: &Cached, cell: &TargetCell) {
         let Held::Formula { value, shown, .. } = held else {
             self.texts.push(cell.at.clone());
-            return false;
+            return;
         };
         match (value, shown, expected) {
             _ if cell.awaits => self.waiting.push(cell.at.clone()),
@@ -178,7 +186,6 @@ impl Kept {
                 self.differing.push((cell.at.clone(), found, expected.clone(), difference));
             }
         }
-        true
     }
 
     fn take_tick(&mut self) -> usize {
@@ -195,6 +202,19 @@ impl Kept {
             problems.push(
                 Problem::error("target-text", place.called(&target.from), message)
                     .hint("clear the cells, or point the name at others"),
+            );
+        }
+        let cells: Vec<SheetRange> = self.typed.iter().map(|(at, _)| at.clone()).collect();
+        if let (Some(place), Some((at, typed))) = (span(&cells), self.typed.first()) {
+            let message = format!(
+                "{} of {total} cells held typed numbers that differ from the declared basis and were replaced; {} held \
+                 {typed}",
+                self.typed.len(),
+                at.range
+            );
+            problems.push(
+                Problem::warning("number-replaced", place.called(&target.from), message)
+                    .hint("Audit changes keeps every number that was replaced"),
             );
         }
         if let Some(place) = span(&self.waiting) {

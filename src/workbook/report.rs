@@ -92,6 +92,8 @@ pub struct Report {
     pub filled: usize,
     /// Formula cells that agreed and were left.
     pub ticked: usize,
+    /// Rows of numbers along the years that no role names: heading and cells.
+    pub not_valued: Vec<String>,
     /// The verdict as written to the audit summary.
     pub verdict: String,
 }

@@ -39,6 +39,8 @@ pub enum Style {
     Text,
     /// Text that wraps.
     Wrapped,
+    /// A text that stands where a number is looked for: to the right, wrapped.
+    Instead,
     /// Bold text that wraps: a label, a verdict.
     Strong,
     /// The verdict: bold, large, on one line.
@@ -71,7 +73,7 @@ pub enum Style {
 
 impl Style {
     fn wraps(self) -> bool {
-        matches!(self, Style::Heading | Style::Wrapped | Style::Strong)
+        matches!(self, Style::Heading | Style::Wrapped | Style::Instead | Style::Strong)
     }
 
     fn format(self, decimals: bool) -> Format {
@@ -95,6 +97,9 @@ impl Style {
             }
             Style::Wrapped => {
                 format.set_text_wrap().set_align(FormatAlignment::Left);
+            }
+            Style::Instead => {
+                format.set_text_wrap().set_align(FormatAlignment::Right);
             }
             Style::Strong => {
                 format.set_text_wrap().set_bold().set_align(FormatAlignment::Left);

@@ -56,9 +56,28 @@ fn text_is_never_overwritten() {
         assert_eq!(code(&output), 1);
         let text = stderr(&output);
         assert!(text.contains("Appraisal!B34 [hence_npv]") && text.contains("(target-text)"), "{text}");
+        assert!(stdout(&output).contains("Verdict: differs"), "a text is no result: {}", stdout(&output));
         let filled = book.beside("plan.audited.xlsx");
         assert_eq!(cell(&filled, "Appraisal", "B34").value, Value::Text("see the memo".into()));
     }
+}
+
+#[test]
+fn a_typed_number_is_replaced_with_a_warning() {
+    let book = plan(&[("B34", "12345")]);
+    let output = run(&["fill", book.arg()]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    let text = stderr(&output);
+    assert!(text.contains("Appraisal!B34 [hence_npv]") && text.contains("B34 held 12345"), "{text}");
+    assert!(text.contains("(number-replaced)"), "{text}");
+    // What a fill wrote as a number is its own, and replaced in silence.
+    let values = run(&["fill", book.arg(), "--force", "--write", "values"]);
+    assert_eq!(code(&values), 0);
+    let audited = book.beside("plan.audited.xlsx");
+    let again =
+        run(&["fill", audited.to_str().unwrap(), "--basis", "7%", "--out", &book.beside_arg("again.xlsx")]);
+    assert_eq!(code(&again), 0, "{}", stderr(&again));
+    assert!(!stderr(&again).contains("number-replaced"), "{}", stderr(&again));
 }
 
 /// The plan without a single name, its cells given on the command line instead.

@@ -401,6 +401,28 @@ fn a_stream_and_its_own_total_count_twice() {
     );
 }
 
+/// Values pasted over formulas count twice as formulas do.
+#[test]
+fn pasted_numbers_of_other_streams_are_told() {
+    let one = "A8: 'Pumps | 3 | 4 | 6";
+    let sum = format!("{one}\nA10: 'Total costs | 103 | 54 | 31");
+    let (two, three) = ("hence_cost_pumps B8:D8", "hence_cost_pumps B8:D8, hence_cost_all B10:D10");
+    assert_eq!(named(one, two).problems(), [""; 0]);
+    assert_eq!(named(&sum, three).problems(), ["same-numbers Plan!B10:D10 [hence_cost_all]"]);
+    let copy = named("A8: 'Again | 100 | 50 | 25", "hence_cost_again B8:D8");
+    assert_eq!(copy.problems(), ["same-numbers Plan!B8:D8 [hence_cost_again]"]);
+    let level = named("A8: 'A | 5 | 5 | 5\nA10: 'B | 5 | 5 | 5", "hence_cost_a B8:D8, hence_cost_b B10:D10");
+    assert_eq!(level.problems(), [""; 0], "flows that never change are alike by chance");
+}
+
+#[test]
+fn a_cost_that_adds_up_to_less_than_nothing_is_told() {
+    let mixed = named("A8: 'Pumps | -30 | -4 | 6", "hence_cost_pumps B8:D8");
+    assert_eq!(mixed.problems(), ["cost-sign Plan!B8:D8 [hence_cost_pumps]"]);
+    let refund = named("A8: 'Pumps | 30 | 4 | -6", "hence_cost_pumps B8:D8");
+    assert_eq!(refund.problems(), [""; 0]);
+}
+
 #[test]
 fn held_contents_and_number_formats_of_targets() {
     let read = plan("A7: 'Factor | 1 | =B7/1.035>0.966183574879227 | 'x\nA9: 'NPV | {3}").resolved();

@@ -2,7 +2,7 @@
 
 use std::collections::BTreeSet;
 
-use crate::appraisal::{Choice, Direction};
+use crate::appraisal::{Choice, Direction, Stream};
 use crate::problem::{Place, Problem};
 use crate::references::{Cell, SheetRange, Token, tokens};
 
@@ -62,11 +62,15 @@ pub(super) fn check(context: &mut Context, choice: &Choice) {
     }
     let ranges: Vec<&SheetRange> = choice.streams.iter().map(|stream| &stream.at).collect();
     let reached = reached(context, &ranges);
+    let mut told: BTreeSet<&SheetRange> = BTreeSet::new();
     for (stream, reached) in choice.streams.iter().zip(&reached) {
         for other in choice.streams.iter().filter(|other| other.at != stream.at) {
             let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
             let through =
                 reached.iter().filter(|(at, _)| overlap(at, &other.at)).map(|(_, adds)| *adds).max();
+            if through.is_some() {
+                told.extend([&stream.at, &other.at]);
+            }
             match through {
                 Some(true) => context.report(
                     Problem::error(
@@ -90,6 +94,51 @@ pub(super) fn check(context: &mut Context, choice: &Choice) {
                 None => {}
             }
         }
+    }
+    repeated(context, choice, &told);
+}
+
+/// The most streams of one kind among which sums are looked for: the work doubles with each.
+const SUMMED: usize = 12;
+
+/// Warns of a stream whose numbers are, year by year, those of another or the sum of others of its kind: values pasted
+/// over formulas count twice as formulas do. What formulas have `told` already is left out.
+fn repeated(context: &mut Context, choice: &Choice, told: &BTreeSet<&SheetRange>) {
+    for stream in choice.streams.iter().filter(|stream| !told.contains(&stream.at)) {
+        let same_kind = |other: &&Stream| other.kind == stream.kind && other.at != stream.at;
+        let others: Vec<&Stream> = choice.streams.iter().filter(same_kind).take(SUMMED).collect();
+        let flows = |s: &Stream| -> Vec<f64> { s.raw.iter().map(|x| x * s.sign * s.unit).collect() };
+        let own = flows(stream);
+        // Flows that never change are alike by chance.
+        if own.iter().all(|x| *x == own[0]) {
+            continue;
+        }
+        let parts: Vec<Vec<f64>> = others.iter().map(|other| flows(other)).collect();
+        let found = (1u32..1 << parts.len()).find(|set| {
+            let chosen = || (0..parts.len()).filter(|k| set & (1 << k) != 0).map(|k| &parts[k]);
+            // A stream of zeros adds nothing, and a pair of copies is told once.
+            let zeros = chosen().any(|part| part.iter().all(|x| *x == 0.0));
+            !zeros
+                && own.iter().enumerate().all(|(year, x)| {
+                    let sum: f64 = chosen().map(|part| part[year]).sum();
+                    (sum - x).abs() <= 1e-9 * x.abs().max(sum.abs())
+                })
+        });
+        let Some(set) = found else { continue };
+        let names: Vec<&str> =
+            (0..others.len()).filter(|k| set & (1 << k) != 0).map(|k| others[k].from.as_str()).collect();
+        if names.len() == 1 && stream.at < others[set.trailing_zeros() as usize].at {
+            continue;
+        }
+        let message = format!("holds in every year the numbers of {}", names.join(" and "));
+        context.report(
+            Problem::warning(
+                "same-numbers",
+                Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
+                message,
+            )
+            .hint("name the total or its parts, not both; leave it if the numbers are alike by chance"),
+        );
     }
 }
 

@@ -121,7 +121,8 @@ fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Name
     let from = format!("--role {role}");
     let place = Place::name(&from);
     let name = roles::parse_role(role).map_err(|slip| {
-        Problem::error("unknown-role", place.clone(), slip).hint("`hence names --help` lists the roles")
+        Problem::error("unknown-role", place.clone(), slip)
+            .hint("the README lists the roles, and `hence names BOOK` those that a workbook has")
     })?;
     if name.role.info().way == Way::Own {
         return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given").into());

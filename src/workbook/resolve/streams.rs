@@ -201,6 +201,16 @@ fn check_sign(context: &mut Context, stream: &Stream, signs: Signs) {
             )
             .hint("check the sign of this stream"),
         ),
+        StreamKind::Cost if has(1.0) && has(-1.0) && stream.raw.iter().sum::<f64>() * stream.sign < 0.0 => {
+            context.report(
+                Problem::warning(
+                    "cost-sign",
+                    place(),
+                    "holds flows of both signs and adds up to less than nothing",
+                )
+                .hint("check its signs: a cost below zero counts for the option"),
+            );
+        }
         StreamKind::Benefit if wholly_negative => context.report(
             Problem::warning("benefit-sign", place(), "is negative in every year, and benefits are positive")
                 .hint("check the sign, or name it hence_cost_ or hence_flow_"),

@@ -110,6 +110,7 @@ fn head(sheet: &mut Sheet, input: &AuditInput<'_>) {
     sheet.columns(col::OFFSET, col::OFFSET, 10.0);
     sheet.columns(col::REBUILT, col::NOW, 17.0);
     sheet.columns(col::DIFFERENCE, col::RESULT, 11.0);
+    sheet.columns(col::RESULT, col::RESULT, 25.0);
     sheet.columns(9, 9, 3.0);
     let most = input.appraisal.choices.iter().map(|c| c.streams.len()).max().unwrap_or(0) as u32;
     sheet.columns(col::FLOWS, col::FLOWS + most.max(1), 14.0);

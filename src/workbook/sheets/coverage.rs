@@ -24,7 +24,7 @@ pub(super) struct Coverage {
 /// Makes the sheet: valued rows first, then the others.
 pub(super) fn sheet(input: &AuditInput<'_>) -> Coverage {
     let mut sheet = Sheet::new(&input.names.coverage);
-    for (i, width) in [34.0, 34.0, 30.0, 18.0, 18.0, 14.0, 12.0, 12.0].into_iter().enumerate() {
+    for (i, width) in [34.0, 34.0, 30.0, 18.0, 18.0, 14.0, 12.0, 24.0].into_iter().enumerate() {
         sheet.columns(i as u32, i as u32, width);
     }
     sheet.text(0, 0, Style::Title, "Audit coverage");

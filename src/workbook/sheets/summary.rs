@@ -246,6 +246,8 @@ impl Page {
             if found.iter().all(Option::is_none) {
                 continue;
             }
+            let of_increments = matches!(k, 9 | 10) && input.appraisal.baseline.is_some();
+            let label = if of_increments { format!("{label} over the baseline") } else { label.to_owned() };
             self.sheet.text(self.row, 0, Style::Wrapped, label);
             for (c, row) in found.into_iter().enumerate() {
                 let Some(row) = row else { continue };
@@ -256,7 +258,7 @@ impl Page {
                 };
                 let text = table_ref(&home, layout, row, column);
                 let result = table_value(input, k, c);
-                let style = if matches!(result, Cached::Text(_)) { Style::Wrapped } else { style };
+                let style = if matches!(result, Cached::Text(_)) { Style::Instead } else { style };
                 self.sheet.formula(self.row, c as u32 + 1, style, text, result);
             }
             self.row += 1;
@@ -273,19 +275,28 @@ impl Page {
         };
         let years = |sheet: &mut Sheet, row, col, value: Option<f64>, none: &str| match value {
             Some(x) => sheet.number(row, col, Style::Ratio, x),
-            None => sheet.text(row, col, Style::Wrapped, none),
+            None => sheet.text(row, col, Style::Instead, none),
         };
         each(self, "Service years N of the annual equivalent", &|sheet, row, col, c| {
             sheet.number(row, col, Style::Year, f64::from(input.outcomes[c].service_years));
         });
-        each(self, "Discounted payback (years, first crossing)", &|sheet, row, col, c| {
-            years(sheet, row, col, input.outcomes[c].payback.first, "none");
-        });
-        each(self, "Discounted payback (years, last crossing)", &|sheet, row, col, c| {
-            years(sheet, row, col, input.outcomes[c].payback.last, "none");
-        });
-        each(self, "Internal rates of return", &|sheet, row, col, c| {
-            sheet.text(row, col, Style::Wrapped, rates_of_return(&input.outcomes[c]));
+        let over = if input.appraisal.baseline.is_some() { " over the baseline" } else { "" };
+        each(
+            self,
+            &format!("Discounted payback{over} (years from the base, first crossing)"),
+            &|sheet, row, col, c| {
+                years(sheet, row, col, input.outcomes[c].payback.first, "none");
+            },
+        );
+        each(
+            self,
+            &format!("Discounted payback{over} (years from the base, last crossing)"),
+            &|sheet, row, col, c| {
+                years(sheet, row, col, input.outcomes[c].payback.last, "none");
+            },
+        );
+        each(self, &format!("Internal rates of return{over}"), &|sheet, row, col, c| {
+            sheet.text(row, col, Style::Instead, rates_of_return(&input.outcomes[c]));
         });
         each(self, "Mean time of gross present value (years)", &|sheet, row, col, c| {
             years(sheet, row, col, input.outcomes[c].mean_time, "none");
@@ -340,7 +351,8 @@ impl Page {
         ] {
             self.sheet.text(self.row, 0, Style::Wrapped, label);
             self.sheet.number(self.row, 1, Style::Year, number as f64);
-            self.sheet.paragraph(self.row, 2, LAST, Style::Wrapped, allowed);
+            // Room between the number and what it may differ by.
+            self.sheet.paragraph(self.row, 2, LAST, Style::Wrapped, format!("  {allowed}"));
             self.row += 1;
         }
         let text = format!(
