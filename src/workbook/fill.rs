@@ -216,7 +216,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
 }
 
 /// Rows of numbers along the years that no role names: heading and cells.
-fn not_valued(appraisal: &Appraisal) -> Vec<String> {
+pub(crate) fn not_valued(appraisal: &Appraisal) -> Vec<String> {
     let rows = appraisal.coverage.iter().filter(|row| row.roles.is_empty() && !row.follows);
     rows.map(|row| match row.heading.as_str() {
         "" => row.at.to_string(),

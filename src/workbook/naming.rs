@@ -2,14 +2,15 @@
 
 use std::collections::BTreeMap;
 
+use crate::fill::not_valued;
 use crate::formulas::absolute;
 use crate::model::Workbook;
 use crate::names_edit::{BookEdit, NewName, edit_workbook};
 use crate::package::{Changes, Package};
 use crate::preflight::preflight;
-use crate::problem::{Place, Problem, Result};
+use crate::problem::{Place, Problem, Result, Severity};
 use crate::references::quote_sheet;
-use crate::resolve::{Found, names};
+use crate::resolve::{Found, Options, names, resolve};
 use crate::suggest::{Guess, suggest};
 
 /// What the names say, and what was guessed.
@@ -23,6 +24,8 @@ pub struct Naming {
     pub problems: Vec<Problem>,
     /// Suggested names with their reasons; none unless asked for.
     pub guesses: Vec<Guess>,
+    /// After a suggestion, rows of numbers along the years that got no name: heading and cells.
+    pub not_named: Vec<String>,
 }
 
 /// Lists the roles of a workbook.
@@ -33,7 +36,13 @@ pub fn roles_of(package: &Package) -> Result<Naming> {
     let mut problems = preflight(package)?;
     let report = names(package, &Workbook::read(package)?)?;
     problems.extend(report.slips);
-    Ok(Naming { found: report.found, missing: report.missing, problems, guesses: Vec::new() })
+    Ok(Naming {
+        found: report.found,
+        missing: report.missing,
+        problems,
+        guesses: Vec::new(),
+        not_named: Vec::new(),
+    })
 }
 
 /// Guesses years, flows, factors and results from headings and shapes, and writes names for them into a copy, whose
@@ -68,8 +77,18 @@ pub fn with_suggestions(package: &Package) -> Result<(Naming, Vec<u8>)> {
     let changes = Changes { replace: BTreeMap::from([(part, edited)]), ..Changes::default() };
     let bytes = package.write(&changes)?;
     // The copy is read back: names that cannot be used would be seen here, and what is still missing is told.
-    let copy = roles_of(&Package::from_bytes(package.file_name(), bytes.clone())?)?;
+    let written = Package::from_bytes(package.file_name(), bytes.clone())?;
+    let copy = roles_of(&written)?;
     report.missing = copy.missing;
     report.problems = copy.problems;
+    // Any rate will do to see which rows would be left out, and what a fill would stop at.
+    match resolve(&written, &Workbook::read(&written)?, &Options { roles: &[], basis: Some("0%") }) {
+        Ok(appraisal) => report.not_named = not_valued(&appraisal),
+        Err(error) => {
+            let stops = error.problems().iter().filter(|p| p.severity == Severity::Error);
+            let missing = stops.filter(|p| p.code != "missing-role");
+            report.problems.extend(missing.map(|p| Problem { severity: Severity::Warning, ..p.clone() }));
+        }
+    }
     Ok((report, bytes))
 }

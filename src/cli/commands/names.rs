@@ -90,7 +90,7 @@ fn json(shown: &str, written: Option<&str>, report: &Naming) -> String {
         .collect();
     let problems: Vec<Found> = report.problems.iter().map(Found::from).collect();
     Document::text(vec![serde_json::json!({
-        "input": shown, "output": written, "found": found, "guesses": guesses, "missing": report.missing,
+        "input": shown, "output": written, "found": found, "guesses": guesses, "missing": report.missing, "not_named": report.not_named,
         "problems": problems
     })])
 }
@@ -107,6 +107,9 @@ fn text(written: Option<&str>, report: &Naming) -> String {
     }
     for guess in &report.guesses {
         text.push_str(&format!("guess: {} = {}: {}\n", guess.name, guess.at, guess.why));
+    }
+    for row in &report.not_named {
+        text.push_str(&format!("no name: {row}\n"));
     }
     for missing in &report.missing {
         text.push_str(&format!("missing: {missing}\n"));
