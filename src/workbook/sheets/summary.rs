@@ -44,7 +44,7 @@ pub(super) fn sheet(
 ) -> Summary {
     let mut sheet = Sheet::new(&input.names.summary);
     let options = input.appraisal.choices.len() as u32;
-    sheet.columns(0, 0, 38.0);
+    sheet.columns(0, 0, 48.0);
     sheet.columns(1, options.max(LAST), 18.0);
     sheet.text(0, 0, Style::Title, "Audit summary");
     let verdict = verdict(&mut sheet, input, checks, coverage);
