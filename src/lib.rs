@@ -38,7 +38,7 @@ pub use measures::{
     present_values, undiscounted_total,
 };
 pub use prices::{nominal_rate, real_flows, real_flows_by_inflation, real_rate};
-pub use rateline::{RateLine, percent};
+pub use rateline::{RateLine, distance, percent};
 pub use schedule::{Schedule, ScheduleStatus};
 pub use spec::{Band, Compounding, Edge, HorizonRule, Spec, Where};
 pub use sum::{ExactSum, dot, sum};

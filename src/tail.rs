@@ -4,7 +4,7 @@ use std::fmt;
 use std::str::FromStr;
 
 use crate::perpetuity::{MOST, Perpetuity};
-use crate::{Curve, Error, ErrorKind, Result, Timing, check, dot};
+use crate::{Curve, Error, ErrorKind, Result, Timing, check, dot, percent};
 
 /// A stream that goes on after its last year.
 ///
@@ -273,24 +273,6 @@ fn percentage(word: &str, at: usize) -> Result<f64> {
     match format!("{digits}e-2").parse::<f64>() {
         Ok(share) if plain && share.is_finite() => Ok(share + 0.0), // -0 becomes 0
         _ => Err(syntax(format!("found \"{word}\", expected a percentage such as 1% or -0.5%"), at)),
-    }
-}
-
-/// The shortest percentage that [`percentage`] reads as the same number.
-fn percent(share: f64) -> String {
-    let text = format!("{share:e}");
-    let (mantissa, exponent) = text.split_once('e').unwrap_or((&text, "0"));
-    let exponent = exponent.parse::<i32>().unwrap_or(0) + 2;
-    let (sign, mantissa) = mantissa.strip_prefix('-').map_or(("", mantissa), |rest| ("-", rest));
-    let digits = mantissa.replace('.', "");
-    let point = exponent + 1; // digits before the decimal point
-    if point <= 0 {
-        return format!("{sign}0.{}{digits}%", "0".repeat(point.unsigned_abs() as usize));
-    }
-    let point = point as usize;
-    match digits.get(..point) {
-        Some(before) if point < digits.len() => format!("{sign}{before}.{}%", &digits[point..]),
-        _ => format!("{sign}{digits}{}%", "0".repeat(point - digits.len())),
     }
 }
 

@@ -12,6 +12,7 @@ mod words;
 pub(crate) use number::check_flat;
 pub use number::percent;
 pub(crate) use number::plain;
+pub use suggest::distance;
 pub(crate) use suggest::nearest;
 pub(crate) use words::{in_words, is_word};
 

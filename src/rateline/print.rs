@@ -1,23 +1,13 @@
 //! The canonical rate line of a curve.
 use super::{Positions, percent, plain};
-use crate::{Band, Compounding, Edge, HorizonRule, Position, Spec};
+use crate::{Band, Compounding, Edge, HorizonRule, Spec};
 use std::fmt;
-
-/// The word for a position.
-pub(super) fn position_word(position: Position) -> &'static str {
-    match position {
-        Position::Start => "start",
-        Position::Middle => "middle",
-        Position::End => "end",
-        Position::Averaged => "averaged",
-    }
-}
 
 /// "", or the timing clauses with the `; ` before them.
 pub(super) fn timing_clauses(positions: Positions) -> String {
     let stated: Vec<String> = [("flows", positions.flows), ("base", positions.base)]
         .into_iter()
-        .filter_map(|(what, position)| position.map(|position| format!("{what} {}", position_word(position))))
+        .filter_map(|(what, position)| position.map(|position| format!("{what} {position}")))
         .collect();
     if stated.is_empty() { String::new() } else { format!("; {}", stated.join(", ")) }
 }

@@ -18,8 +18,12 @@ pub(crate) fn nearest<'a>(word: &str, known: impl IntoIterator<Item = &'a str>) 
         .map(|(_, candidate)| candidate)
 }
 
-/// Characters to insert, delete, change or swap with a neighbour to get from one word to the other.
-pub(crate) fn distance(from: &str, to: &str) -> usize {
+/// Characters to insert, delete, change or swap with a neighbour to get from one word to the other, for hints.
+///
+/// ```
+/// assert_eq!(hence_core::distance("yaers", "years"), 1);
+/// ```
+pub fn distance(from: &str, to: &str) -> usize {
     let to: Vec<char> = to.chars().collect();
     let from: Vec<char> = from.chars().collect();
     let mut rows = vec![(0..=to.len()).collect::<Vec<_>>()];

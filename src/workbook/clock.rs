@@ -47,7 +47,8 @@ fn years_after_base(axis: &Axis, base: &Base) -> Result<(Vec<f64>, bool)> {
     if problems.is_empty() { Ok((years, timed)) } else { Err(problems.into()) }
 }
 
-fn label_kind(label: &Label) -> &'static str {
+/// What kind of entry a label is, in words.
+pub(crate) fn label_kind(label: &Label) -> &'static str {
     match label {
         Label::Year(_) => "a calendar year",
         Label::Number(_) => "a year number",

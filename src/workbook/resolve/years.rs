@@ -4,6 +4,7 @@ use chrono::{Days, NaiveDate};
 use hence_core::parse_financial_year;
 
 use crate::appraisal::{Axis, Base, Direction, Given, Label};
+use crate::clock::label_kind;
 use crate::problem::{Place, Problem};
 use crate::reading::{ReadCell, Value};
 use crate::references::SheetRange;
@@ -135,8 +136,12 @@ fn step(last: &Label, next: &Label, place: Place) -> Option<Problem> {
         (Label::Offset(a), Label::Offset(b)) => (b > a, a == b),
         _ => {
             return Some(
-                Problem::error("years-mixed", place, format!("is {} after {}", kind(next), kind(last)))
-                    .hint("enter all years in one way"),
+                Problem::error(
+                    "years-mixed",
+                    place,
+                    format!("is {} after {}", label_kind(next), label_kind(last)),
+                )
+                .hint("enter all years in one way"),
             );
         }
     };
@@ -167,16 +172,6 @@ fn step(last: &Label, next: &Label, place: Place) -> Option<Problem> {
         )
         .hint("nothing flows in a year left out; check that this is meant")
     })
-}
-
-fn kind(label: &Label) -> &'static str {
-    match label {
-        Label::Year(_) => "a calendar year",
-        Label::Number(_) => "a year number",
-        Label::Financial(..) => "a financial year",
-        Label::Date(_) => "a date",
-        Label::Offset(_) => "an offset",
-    }
 }
 
 fn words(label: &Label) -> String {
@@ -261,7 +256,7 @@ pub(super) fn base(context: &mut Context, named: Option<&Named>, axis: &Axis) ->
                 Problem::error(
                     "base-years",
                     named.place(),
-                    format!("the base is {} ({}) and the years are {}s", kind(&stated), words(&stated), plain(first)),
+                    format!("the base is {} ({}) and the years are {}s", label_kind(&stated), words(&stated), plain(first)),
                 )
                 .hint("state base and years in one way: both calendar years, both financial years or both dates"),
             );
@@ -271,7 +266,7 @@ pub(super) fn base(context: &mut Context, named: Option<&Named>, axis: &Axis) ->
 }
 
 fn plain(label: &Label) -> &'static str {
-    let kind = kind(label);
+    let kind = label_kind(label);
     kind.strip_prefix("a ").or(kind.strip_prefix("an ")).unwrap_or(kind)
 }
 

@@ -1,5 +1,7 @@
 //! What a name that is no role was probably meant to be.
 
+use hence_core::distance;
+
 use super::{PREFIX, ROLES, RoleInfo, Takes};
 
 /// The message for a word that no role bears, with the nearest role.
@@ -48,25 +50,6 @@ fn nearest(body: &str) -> Option<String> {
         }
     }
     best.map(|(_, meant)| meant)
-}
-
-/// The number of letters to insert, drop, change or swap with their neighbour.
-fn distance(a: &str, b: &str) -> usize {
-    let (a, b): (Vec<char>, Vec<char>) = (a.chars().collect(), b.chars().collect());
-    let mut rows = vec![(0..=b.len()).collect::<Vec<usize>>()];
-    for i in 1..=a.len() {
-        let mut row = vec![i];
-        for j in 1..=b.len() {
-            let change = rows[i - 1][j - 1] + usize::from(a[i - 1] != b[j - 1]);
-            let mut least = change.min(rows[i - 1][j] + 1).min(row[j - 1] + 1);
-            if i > 1 && j > 1 && a[i - 1] == b[j - 2] && a[i - 2] == b[j - 1] {
-                least = least.min(rows[i - 2][j - 2] + 1);
-            }
-            row.push(least);
-        }
-        rows.push(row);
-    }
-    rows[a.len()][b.len()]
 }
 
 #[cfg(test)]
