@@ -31,6 +31,42 @@ pub fn ramsey_rate(rho: f64, eta: f64, g: f64) -> Result<f64> {
     Ok(rate)
 }
 
+/// The social discount rate where growth is uncertain and independent from year to year.
+///
+/// **Formula**: rho + eta g - eta (eta + 1) sd^2 / 2, the last term the precautionary effect.
+///
+/// **Arguments**: as for [`ramsey_rate`], `g` the expected growth; `sd` its standard deviation, a fraction per year, 0
+/// or more.
+///
+/// **Returns**: a fraction per year in the compounding of the parts, rounded once.
+///
+/// **Errors**: `NotFinite`; `RateRange` for an elasticity or a standard deviation outside its range.
+///
+/// **Source**: C. Gollier, Pricing the Planet's Future, 2013, ch. 3 (the extended Ramsey rule), from memory.
+///
+/// ```
+/// use hence_core::ramsey_rate_uncertain;
+/// // 0.01 + 2 x 0.02 - 2 x 3 x 0.036^2 / 2 = 0.046112
+/// assert_eq!(ramsey_rate_uncertain(0.01, 2.0, 0.02, 0.036)?, 0.046112);
+/// assert_eq!(ramsey_rate_uncertain(0.015, 1.0, 0.02, 0.0)?, 0.035);
+/// assert_eq!(ramsey_rate_uncertain(0.015, 1.0, 0.02, -0.1).unwrap_err().code(), "rate-range");
+/// # Ok::<(), hence_core::Error>(())
+/// ```
+pub fn ramsey_rate_uncertain(rho: f64, eta: f64, g: f64, sd: f64) -> Result<f64> {
+    finite("rho", rho)?;
+    check_elasticity(eta)?;
+    finite("g", g)?;
+    finite("sd", sd)?;
+    if sd < 0.0 {
+        return Err(Error::new(ErrorKind::RateRange, "sd", format!("sd is {sd}, allowed 0 or more"))
+            .with_hint("the standard deviation of growth as a fraction: 0.036 for 3.6%"));
+    }
+    let caution = two_prod(sd, sd) * eta * (Dd::of(eta) + Dd::of(1.0)) * 0.5;
+    let rate = (Dd::of(rho) + two_prod(eta, g) - caution).hi;
+    finite("rate", rate)?;
+    Ok(rate)
+}
+
 /// The weight of a unit of money to a group, relative to one at the reference income.
 ///
 /// **Formula**: (reference / income)^elasticity, the ratio of marginal utilities under isoelastic utility.

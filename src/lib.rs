@@ -30,7 +30,7 @@ pub use calendar::{DayCount, offset_of_dates, parse_financial_year, years_after_
 pub use catalogue::Catalogue;
 pub use curve::{Curve, Domain, Parts};
 pub use error::{Error, ErrorKind, Result};
-pub use evidence::{elasticity_from_taxes, equity_weight, ramsey_rate};
+pub use evidence::{elasticity_from_taxes, equity_weight, ramsey_rate, ramsey_rate_uncertain};
 pub use irr::{IRR_INTERVAL, IrrSearch, internal_rates};
 pub use measures::{
     Eras, Increment, Payback, annual_equivalent, benefit_cost_ratio, cost_per_effect, discounted_payback,

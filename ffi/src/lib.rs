@@ -11,6 +11,7 @@ mod curves;
 mod error;
 mod evidence;
 mod status;
+pub mod worksheet;
 
 pub use arguments::HENCE_LENGTH_MAX;
 pub use basis::{hence_basis, hence_basis_describe, hence_basis_free, hence_basis_parse};

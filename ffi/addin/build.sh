@@ -1,0 +1,12 @@
+#!/usr/bin/env bash
+# Builds an add-in into target/addin: `bash ffi/addin/build.sh calc` or `bash ffi/addin/build.sh excel`.
+set -euo pipefail
+cd "$(dirname "$0")/../.."
+
+case "${1:-}" in
+  calc | excel) exec bash "ffi/addin/$1/build.sh" ;;
+  *)
+    echo "build: found \"${1:-}\", allowed: calc, excel" >&2
+    exit 2
+    ;;
+esac

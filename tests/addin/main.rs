@@ -1,0 +1,9 @@
+//! The add-ins: the function table, a real LibreOffice, and a stand-in host for Excel under Wine.
+
+mod table;
+
+use std::path::{Path, PathBuf};
+
+fn root() -> PathBuf {
+    Path::new(env!("CARGO_MANIFEST_DIR")).join("..")
+}

@@ -1,0 +1,35 @@
+//! The table of worksheet functions is sound, and each of its C symbols is in the header.
+
+use hence::worksheet::FUNCTIONS;
+
+use crate::root;
+
+#[test]
+fn every_symbol_is_in_the_header() {
+    let header = std::fs::read_to_string(root().join("include/hence.h")).expect("include/hence.h");
+    for function in FUNCTIONS {
+        let symbol = function.symbol;
+        assert!(header.contains(&format!("{symbol}(")), "{} names {symbol}", function.name);
+    }
+}
+
+/// The same text works in both programs: letters after one dot, never shaped like a cell, and arguments that may be
+/// left out stand last.
+#[test]
+fn names_and_arguments_are_as_both_programs_need_them() {
+    assert_eq!(FUNCTIONS.len(), 12);
+    for function in FUNCTIONS {
+        let name = function.name;
+        assert!(name.len() >= 3 && name.bytes().all(|b| b.is_ascii_uppercase()), "{name}");
+        assert!(!function.arguments.is_empty() && function.arguments.len() <= 5, "{name}");
+        let optional: Vec<bool> = function.arguments.iter().map(|argument| argument.optional).collect();
+        assert!(optional.is_sorted(), "{name}: {optional:?}");
+        // 255 characters are the most that a string constant of an .xll registration or a formula may have.
+        let texts = function.arguments.iter().map(|argument| argument.help).chain([function.help]);
+        for text in texts {
+            assert!(text.len() <= 255 && text.is_ascii(), "{name}: {text}");
+        }
+        assert!(function.example.starts_with(&format!("=HENCE.{name}(")), "{name}");
+        assert!(function.required() >= 1, "{name}");
+    }
+}
