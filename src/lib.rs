@@ -40,7 +40,7 @@ pub use measures::{
 pub use prices::{nominal_rate, real_flows, real_flows_by_inflation, real_rate};
 pub use rateline::{RateLine, distance, percent};
 pub use schedule::{Schedule, ScheduleStatus};
-pub use spec::{Band, Compounding, Edge, HorizonRule, Spec, Where};
+pub use spec::{Band, Compounding, Edge, GrowthState, HorizonRule, Persistence, Spec, Where};
 pub use sum::{ExactSum, dot, sum};
 pub use tail::Tail;
 pub use timing::{Position, TimedOffset, Timing, timing_sentence};
