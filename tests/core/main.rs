@@ -5,6 +5,7 @@ mod basis;
 mod calendar;
 mod curves;
 mod exact;
+mod growth;
 mod irr;
 mod measures;
 mod prices;
