@@ -20,6 +20,7 @@ mod measures;
 mod perpetuity;
 mod prices;
 mod rateline;
+mod roots;
 mod schedule;
 mod spec;
 mod sum;
