@@ -170,6 +170,9 @@ impl Crossing for Stream {
     fn size(&self, rate: f64) -> f64 {
         1.0 + rate
     }
+
+    // Neighbouring numbers are told apart.
+    const FINEST: f64 = 0.0;
 }
 
 /// Powers of 1 + r.

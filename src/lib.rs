@@ -24,6 +24,7 @@ mod roots;
 mod schedule;
 mod spec;
 mod sum;
+mod switching;
 mod tail;
 mod timing;
 
@@ -48,5 +49,6 @@ pub use rateline::{RateLine, distance, percent};
 pub use schedule::{Schedule, ScheduleStatus};
 pub use spec::{Band, Compounding, Edge, GrowthState, HorizonRule, Persistence, Spec, Where};
 pub use sum::{ExactSum, dot, sum};
+pub use switching::{Endless, NetFlows, Parameter, Switching, switching_multiplier, switching_values};
 pub use tail::Tail;
 pub use timing::{Position, TimedOffset, Timing, timing_sentence};

@@ -21,6 +21,9 @@ pub(crate) trait Crossing {
 
     /// The size of x to which a small step is relative, above 0.
     fn size(&self, x: f64) -> f64;
+
+    /// The narrowest piece, relative to the size of x, on which the bounds still tell anything.
+    const FINEST: f64;
 }
 
 /// A point at which the sign is certain.
@@ -65,8 +68,11 @@ fn end(f: &impl Crossing, x: f64, outwards: f64) -> Option<Signed> {
 }
 
 /// A point inside (a, b) whose sign is certain, the middle if possible.
-fn split(f: &impl Crossing, a: f64, b: f64) -> Option<Signed> {
+fn split<F: Crossing>(f: &F, a: f64, b: f64) -> Option<Signed> {
     let parts = [0.5, 0.47, 0.53, 0.42, 0.58, 0.35, 0.65, 0.27, 0.73, 0.18, 0.82, 0.08, 0.92, 0.02, 0.98];
+    if b - a <= F::FINEST * f.size(a) {
+        return None;
+    }
     let points = parts.iter().map(|part| a + part * (b - a));
     points.filter(|&x| x > a && x < b).find_map(|x| sign(f, x))
 }

@@ -14,6 +14,7 @@ mod rateline;
 mod schedule_factors;
 mod schedules;
 mod sums;
+mod switching;
 mod tails;
 mod timing;
 
