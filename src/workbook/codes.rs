@@ -282,6 +282,6 @@ pub const CODES: &[Code] = codes! {
         "syntax": "A text, such as a rate line, does not follow its grammar.",
         "unknown-schedule": "No schedule of that id is known.",
         "unsupported": "This version does not offer what was asked for.",
-        "weights": "The weights of a mixture do not sum to 1, or one is negative.",
+        "weights": "Weights, or chances, do not sum to 1 as they should, or one is negative.",
     }
 };
