@@ -3,7 +3,7 @@
  * From the root of the repository:
  *
  *     cargo build --release -p hence-ffi
- *     cc -std=c99 -Wall -Wextra -pedantic -Iinclude samples/c/flood_wall.c -Ltarget/release -lhence -o target/flood_wall_c
+ *     cc -std=c99 -Wall -Wextra -Werror -pedantic -Iinclude samples/c/flood_wall.c -Ltarget/release -lhence -o target/flood_wall_c
  *     LD_LIBRARY_PATH=target/release target/flood_wall_c
  *
  * Another rate line or schedule and another timing may follow: "3.5% to 30, 3% after" "flows end". */

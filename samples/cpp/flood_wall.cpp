@@ -3,7 +3,7 @@
 // From the root of the repository:
 //
 //     cargo build --release -p hence-ffi
-//     c++ -std=c++17 -Wall -Wextra -pedantic -Iinclude samples/cpp/flood_wall.cpp -Ltarget/release -lhence -o target/flood_wall_cpp
+//     c++ -std=c++17 -Wall -Wextra -Werror -pedantic -Iinclude samples/cpp/flood_wall.cpp -Ltarget/release -lhence -o target/flood_wall_cpp
 //     LD_LIBRARY_PATH=target/release target/flood_wall_cpp
 //
 // Another rate line or schedule and another timing may follow: "3.5% to 30, 3% after" "flows end".

@@ -87,15 +87,16 @@ static SEXP present_values(SEXP basis, SEXP offsets, SEXP flows) {
     return status == HENCE_OK ? out : refusal(&error);
 }
 
-static SEXP number(int32_t status, double value, const hence_error *error) {
-    return status == HENCE_OK ? Rf_ScalarReal(value) : refusal(error);
+/* By address, for C settles the arguments of a call in no order: the value must be read after the status is known. */
+static SEXP number(int32_t status, const double *value, const hence_error *error) {
+    return status == HENCE_OK ? Rf_ScalarReal(*value) : refusal(error);
 }
 
 static SEXP annual_equivalent(SEXP basis, SEXP value, SEXP service_years) {
     hence_error error = {.struct_size = sizeof error};
     double annual = 0;
     int32_t years = Rf_asInteger(service_years);
-    return number(hence_annual_equivalent(handle(basis), Rf_asReal(value), years, &annual, &error), annual, &error);
+    return number(hence_annual_equivalent(handle(basis), Rf_asReal(value), years, &annual, &error), &annual, &error);
 }
 
 static SEXP irr_all(SEXP offsets, SEXP flows, SEXP lowest, SEXP highest) {
@@ -113,15 +114,14 @@ static SEXP irr_all(SEXP offsets, SEXP flows, SEXP lowest, SEXP highest) {
 static SEXP ramsey_rate(SEXP rho, SEXP eta, SEXP g) {
     hence_error error = {.struct_size = sizeof error};
     double rate = 0;
-    return number(hence_ramsey_rate(Rf_asReal(rho), Rf_asReal(eta), Rf_asReal(g), &rate, &error), rate, &error);
+    return number(hence_ramsey_rate(Rf_asReal(rho), Rf_asReal(eta), Rf_asReal(g), &rate, &error), &rate, &error);
 }
 
 static SEXP equity_weight(SEXP income, SEXP reference, SEXP elasticity) {
     hence_error error = {.struct_size = sizeof error};
     double weight = 0;
-    int32_t status =
-        hence_equity_weight(Rf_asReal(income), Rf_asReal(reference), Rf_asReal(elasticity), &weight, &error);
-    return number(status, weight, &error);
+    double y = Rf_asReal(income), median = Rf_asReal(reference), eta = Rf_asReal(elasticity);
+    return number(hence_equity_weight(y, median, eta, &weight, &error), &weight, &error);
 }
 
 /* What R may call, with the number of arguments, which R then checks. */
