@@ -67,11 +67,12 @@ def value_the_wall(curve, timing):
 
 
 def main():
-    curve, timing = [*sys.argv[1:], "flows middle"][:2] if len(sys.argv) > 1 else ("uk-2003", "flows middle")
+    curve, timing = sys.argv[1:3] + ["uk-2003", "flows middle"][len(sys.argv) - 1 :]
     try:
         value_the_wall(curve, timing)
     except hence.HenceError as error:
         sys.exit(f"{error} (argument {error.argument}, index {error.index})")
 
 
-main()
+if __name__ == "__main__":
+    main()

@@ -1,4 +1,4 @@
-"""hence for Python: the C functions through ctypes, over numpy arrays that are not copied. To be copied and extended."""
+"""hence for Python: the C functions through ctypes, over numpy arrays as they stand. To be copied and extended."""
 
 import ctypes
 import sys
