@@ -34,7 +34,7 @@ fn version(language: &str, tool: impl AsRef<Path>, arguments: &[&str]) -> Option
     }
     let output = Command::new(tool).args(arguments).output().ok().filter(|output| output.status.success());
     let Some(output) = output else {
-        did_not_run(language, &format!("no {} {}", tool.display(), arguments.join(" ")));
+        did_not_run(language, &format!("no working {}", tool.display()));
         return None;
     };
     let said = String::from_utf8_lossy(&output.stdout).into_owned();
@@ -79,7 +79,7 @@ fn python_with_numpy() -> Option<(PathBuf, String)> {
     let python = PathBuf::from(std::env::var_os("HENCE_PYTHON").unwrap_or_else(|| "python3".into()));
     let script =
         "import platform, numpy; print('Python', platform.python_version(), 'numpy', numpy.__version__)";
-    let version = version("Python", &python, &["-c", script])?;
+    let version = version("Python with numpy", &python, &["-c", script])?;
     Some((python, version))
 }
 
