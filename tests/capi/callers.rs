@@ -4,6 +4,7 @@
 //! said to have been left out, and fails where HENCE_REQUIRE_TOOLS is set.
 
 mod flood_wall;
+#[allow(dead_code)] // parts of it serve the other tests of the C interface
 mod library;
 mod sample;
 

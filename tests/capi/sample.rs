@@ -51,7 +51,7 @@ fn copy(from: &Path, to: &Path) {
 
 impl Sample {
     pub fn new(program: &str) -> Sample {
-        let root = Path::new(env!("CARGO_MANIFEST_DIR")).join("..");
+        let root = library::root();
         let folder = tempfile::tempdir().expect("a temporary folder");
         let language = Path::new(program).parent().expect("samples/language");
         for part in [Path::new("include"), language] {
