@@ -58,19 +58,43 @@ inline void same_size(numbers a, numbers b) {
     if (a.size() != b.size()) throw std::invalid_argument("the arrays differ in length");
 }
 
+// A text of the library. A buffer of no bytes is too small for any, and the error says how many are needed.
+template <class Function, class Argument>
+std::string text(Function function, Argument of) {
+    hence_error e{};
+    e.struct_size = sizeof e;
+    char none = 0;
+    function(of, &none, 0, &e);
+    if (e.code != HENCE_ERR_CAPACITY) throw error(e);
+    std::string out(static_cast<std::size_t>(e.index), '\0');
+    call(function, of, out.data(), out.size());
+    out.pop_back();  // the NUL
+    return out;
+}
+
+// A function of numbers alone.
+template <class Function, class... Numbers>
+double number(Function function, Numbers... numbers) {
+    double out = 0;
+    call(function, numbers..., &out);
+    return out;
+}
+
 // A parsed rate line or schedule. It can be moved, not copied; any number of threads may use one.
 class basis {
 public:
-    explicit basis(const std::string &line) {
+    // The base year is needed where the line has edges in calendar years, the length where its rates go by the length
+    // of the project; 0 where they are not.
+    explicit basis(const std::string &line, std::int32_t base_year = 0, double length = 0) {
         hence_basis *made = nullptr;
-        call(hence_basis_parse, line.c_str(), &made);
+        call(hence_basis_parse_at, line.c_str(), base_year, length, &made);
         handle_.reset(made);
     }
 
     // The line that parses back to the same basis.
-    std::string line() const { return text(hence_basis_line); }
+    std::string line() const { return text(hence_basis_line, handle_.get()); }
     // The basis in words, with its source.
-    std::string words() const { return text(hence_basis_describe); }
+    std::string words() const { return text(hence_basis_describe, handle_.get()); }
 
     std::vector<double> factors(numbers offsets) const { return each(hence_factors, offsets); }
     std::vector<double> forward_rates(numbers offsets) const { return each(hence_forward_rates, offsets); }
@@ -93,9 +117,7 @@ public:
     }
 
     double annual_equivalent(double value, std::int32_t service_years) const {
-        double annual = 0;
-        call(hence_annual_equivalent, handle_.get(), value, service_years, &annual);
-        return annual;
+        return number(hence_annual_equivalent, handle_.get(), value, service_years);
     }
 
 private:
@@ -110,20 +132,6 @@ private:
         return out;
     }
 
-    // A buffer of no bytes is too small for any text, and the error says how many are needed.
-    template <class Function>
-    std::string text(Function function) const {
-        hence_error e{};
-        e.struct_size = sizeof e;
-        char none = 0;
-        function(handle_.get(), &none, 0, &e);
-        if (e.code != HENCE_ERR_CAPACITY) throw error(e);
-        std::string out(static_cast<std::size_t>(e.index), '\0');
-        call(function, handle_.get(), out.data(), out.size());
-        out.pop_back();  // the NUL
-        return out;
-    }
-
     std::unique_ptr<hence_basis, freed> handle_;
 };
 
@@ -133,27 +141,44 @@ inline std::vector<double> offsets_from_years(numbers years, double base, const 
     return offsets;
 }
 
+// Dates as numbers, 20260401 for 1 April 2026; the day count by its name, "actual/365" for one.
+inline std::vector<double> offsets_from_dates(const std::vector<std::int32_t> &dates, std::int32_t base,
+                                              const std::string &day_count = "anniversaries") {
+    std::vector<double> offsets(dates.size());
+    call(hence_offsets_from_dates, dates.data(), dates.size(), base, day_count.c_str(), offsets.data());
+    return offsets;
+}
+
+// The rate line of a built-in schedule, its timing included.
+inline std::string schedule_line(const std::string &id) { return text(hence_schedule_line, id.c_str()); }
+
 // Every internal rate of return between two rates; there cannot be more than flows.
 inline std::vector<double> irr_all(numbers offsets, numbers flows, double lowest = -0.5, double highest = 1.0) {
     same_size(offsets, flows);
     std::vector<double> rates(flows.size());
     std::size_t count = 0;
-    call(hence_irr_all, offsets.data(), flows.data(), flows.size(), lowest, highest, rates.data(), rates.size(), &count);
+    call(hence_irr_all, offsets.data(), flows.data(), flows.size(), lowest, highest, rates.data(), rates.size(),
+         &count);
     rates.resize(count);
     return rates;
 }
 
-inline double ramsey_rate(double rho, double eta, double g) {
-    double rate = 0;
-    call(hence_ramsey_rate, rho, eta, g, &rate);
-    return rate;
+inline double ramsey_rate(double rho, double eta, double g) { return number(hence_ramsey_rate, rho, eta, g); }
+
+// With growth that is uncertain from year to year, sd its standard deviation.
+inline double ramsey_rate_uncertain(double rho, double eta, double g, double sd) {
+    return number(hence_ramsey_rate_uncertain, rho, eta, g, sd);
+}
+
+inline double elasticity_from_taxes(double marginal, double average) {
+    return number(hence_elasticity_from_taxes, marginal, average);
 }
 
 inline double equity_weight(double income, double reference, double elasticity) {
-    double weight = 0;
-    call(hence_equity_weight, income, reference, elasticity, &weight);
-    return weight;
+    return number(hence_equity_weight, income, reference, elasticity);
 }
+
+inline double real_rate(double nominal, double inflation) { return number(hence_real_rate, nominal, inflation); }
 
 }  // namespace hence
 

@@ -70,9 +70,26 @@ fn c() {
     compiled("C", "cc", "samples/c/flood_wall.c", "-std=c99 -Wall -Wextra -Werror -pedantic");
 }
 
+/// The standard of C++ and the warnings that the samples must do without.
+const CPP: &str = "-std=c++17 -Wall -Wextra -Werror -pedantic";
+
 #[test]
 fn cpp() {
-    compiled("C++", "c++", "samples/cpp/flood_wall.cpp", "-std=c++17 -Wall -Wextra -Werror -pedantic");
+    compiled("C++", "c++", "samples/cpp/flood_wall.cpp", CPP);
+}
+
+/// What hence.hpp offers beyond the sample, against the library; the handle moves and is freed once.
+#[test]
+fn cpp_layer() {
+    let Some(version) = version("C++", "c++", &["--version"]) else { return };
+    let sample = Sample::new("samples/cpp/flood_wall.cpp");
+    let wrapper = library::root().join("tests/capi/c/wrapper.cpp");
+    let compile = format!("c++ {CPP} -Iinclude -Isamples/cpp -Ltarget/release -o target/wrapper");
+    let output = sample.shell(&compile, &[wrapper.to_str().expect("a path in UTF-8"), "-lhence"], &[]);
+    assert!(output.status.success(), "{}", library::said(&output));
+    let output = sample.shell(&format!("{LIBRARY_PATH}target/wrapper"), &[], &[]);
+    assert_eq!(library::said(&output), flood_wall::layer().expect("a text"));
+    ran("C++ (hence.hpp)", &version);
 }
 
 /// A Python with numpy: the one of HENCE_PYTHON, else `python3`.

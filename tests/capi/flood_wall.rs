@@ -1,8 +1,11 @@
-//! What every sample of the flood wall must print, made with the library itself and not through its C interface.
+//! What the samples and the C++ layer must print, made with the library itself and not through its C interface.
+
+use chrono::NaiveDate;
 
 use hence_core::{
-    Basis, Catalogue, Error, ErrorKind, IRR_INTERVAL, Result, TimedOffset, Timing, Where, annual_equivalent,
-    equity_weight, internal_rates, present_value, ramsey_rate,
+    Basis, Catalogue, DayCount, Error, ErrorKind, IRR_INTERVAL, Result, TimedOffset, Timing, Where,
+    annual_equivalent, elasticity_from_taxes, equity_weight, internal_rates, offset_of_dates, present_value,
+    ramsey_rate, ramsey_rate_uncertain, real_rate,
 };
 
 const PLAN: &str = include_str!("../../samples/flood-wall.csv");
@@ -60,6 +63,34 @@ pub fn text(curve: &str, timing: &str) -> Result<String> {
     text += "refused: HENCE_ERR_NOT_FINITE: NaN is not finite (argument 3, index 125)\n";
     text += "which is upkeep in 2050\n";
     Ok(text)
+}
+
+/// What `c/wrapper.cpp` must print, from the library.
+pub fn layer() -> Result<String> {
+    let catalogue = Catalogue::builtin();
+    let curve = |line: &str, at: Where| Basis::parse(line, &catalogue)?.curve(&at);
+    let edges = curve("2.5% to 2070, 1.5% after", Where { base_year: Some(2026), ..Where::default() })?;
+    let by_length = "3.9% at 3, 4% at 10, 4.2% at 30; whole horizon by length, interpolated";
+    let by_length = curve(by_length, Where { length: Some(20.0), ..Where::default() })?;
+    let day = |year, month| NaiveDate::from_ymd_opt(year, month, 1).expect("a date");
+    let dated = |count| offset_of_dates(day(2026, 4), day(2028, 7), count);
+    let numbers = [
+        edges.factor(10.0)?,
+        edges.factor(50.0)?,
+        edges.factor(90.0)?,
+        edges.mean_rate(50.0)?,
+        edges.mean_rate(90.0)?,
+        by_length.factor(10.0)?,
+        0.0,
+        dated(DayCount::Anniversary)?,
+        dated(DayCount::Thirty360E)?,
+        ramsey_rate_uncertain(0.01, 2.0, 0.02, 0.036)?,
+        elasticity_from_taxes(0.42, 0.29)?,
+        real_rate(0.0555, 0.0203)?,
+    ];
+    let bits: Vec<String> = numbers.iter().map(|x| format!("{:016x}", x.to_bits())).collect();
+    let line = catalogue.get("uk-2003").expect("a schedule").line()?;
+    Ok(format!("{}\n{line}\nHENCE_ERR_NULL, argument 1\n", bits.join("\n")))
 }
 
 /// The plan is such that the samples show what they are there to show.
