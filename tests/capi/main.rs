@@ -2,6 +2,7 @@
 
 mod abuse;
 mod header;
+mod install;
 mod layout;
 mod library;
 mod loaded;
