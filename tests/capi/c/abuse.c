@@ -93,6 +93,12 @@ int main(void) {
   CHECK(text[0] == 'x' && text[19] == 'x');
   CHECK(hence_basis_line(basis, text, 21, &error) == HENCE_OK && strcmp(text, "3.5% to 30, 3% to 75") == 0);
   CHECK(text[21] == 'x');
+  REFUSED(hence_basis_timing(basis, text, 3, &error), HENCE_ERR_CAPACITY, 3, 20);
+  CHECK(hence_basis_timing(basis, text, sizeof text, &error) == HENCE_OK && strcmp(text, "flows end, base end") == 0);
+  CHECK(hence_basis_parse("3.5%; flows middle", &none, &error) == HENCE_OK);
+  CHECK(hence_basis_timing(none, text, sizeof text, &error) == HENCE_OK && strcmp(text, "flows middle, base end") == 0);
+  hence_basis_free(none);
+  none = NULL;
   REFUSED(hence_schedule_line("uk-1066", text, sizeof text, &error), HENCE_ERR_SCHEDULE, 1, -1);
   REFUSED(hence_schedule_line(NULL, text, sizeof text, &error), HENCE_ERR_NULL, 1, -1);
   REFUSED(hence_schedule_line("\xc3\x28", text, sizeof text, &error), HENCE_ERR_UTF8, 1, 0);
