@@ -16,6 +16,16 @@ const INTERFACE: &str = "hence.XFunctions";
 const SERVICE: &str = "HENCE";
 /// The extension's own name, by which it is removed.
 const IDENTIFIER: &str = "hence.addin.calc";
+/// The platforms that a library may be for, as LibreOffice names them.
+const PLATFORMS: [&str; 7] = [
+    "linux_x86_64",
+    "linux_aarch64",
+    "macosx_x86_64",
+    "macosx_aarch64",
+    "windows_x86_64",
+    "windows_x86",
+    "windows_aarch64",
+];
 /// The oldest LibreOffice that the extension was tried on.
 const OLDEST: &str = "7.4";
 
@@ -41,6 +51,9 @@ fn make(out: &Path, libraries: &[String]) -> Result<(), String> {
     for library in libraries {
         let (platform, path) =
             library.split_once('=').ok_or_else(|| format!("{library}: allowed is PLATFORM=LIBRARY"))?;
+        if !PLATFORMS.contains(&platform) {
+            return Err(format!("found the platform {platform}, allowed are {}", PLATFORMS.join(", ")));
+        }
         let path = Path::new(path);
         let file = path.file_name().and_then(|name| name.to_str()).ok_or("a library needs a file name")?;
         let bytes = std::fs::read(path).map_err(|error| format!("{}: {error}", path.display()))?;
