@@ -69,18 +69,19 @@ unsafe fn read<'a>(range: *const hence_range, index: usize) -> Result<Option<Ran
     }
     // SAFETY: the whole struct is the caller's, by its size.
     let given = unsafe { range.read() };
-    let n = given.rows.checked_mul(given.columns).unwrap_or(usize::MAX);
+    let n = given.rows.saturating_mul(given.columns);
     if n == 0 {
         return Err(about(Failure::new(HENCE_ERR_SHAPE, 2, "a range has no cells; one left out is NULL")));
     }
     // SAFETY: checked inside for NULL, alignment and length; readable by the caller's contract.
     let numbers = unsafe { arguments::slice(given.numbers, n, 2) }.map_err(about)?;
+    let mut cells = Vec::new();
+    if cells.try_reserve_exact(n).is_err() {
+        return Err(about(Failure::new(HENCE_ERR_LENGTH, 2, format!("there is no memory for {n} cells"))));
+    }
     if given.kinds.is_null() {
-        return Ok(Range::new(
-            given.rows,
-            given.columns,
-            numbers.iter().copied().map(Cell::Number).collect(),
-        ));
+        cells.extend(numbers.iter().copied().map(Cell::Number));
+        return Ok(Range::new(given.rows, given.columns, cells));
     }
     // SAFETY: as above.
     let kinds = unsafe { arguments::slice(given.kinds, n, 2) }.map_err(about)?;
@@ -106,7 +107,9 @@ unsafe fn read<'a>(range: *const hence_range, index: usize) -> Result<Option<Ran
             }
         })
     };
-    let cells = (0..n).map(cell).collect::<Result<Vec<Cell<'a>>, Failure>>()?;
+    for i in 0..n {
+        cells.push(cell(i)?);
+    }
     Ok(Range::new(given.rows, given.columns, cells))
 }
 

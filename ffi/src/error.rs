@@ -35,6 +35,17 @@ impl Failure {
         Failure { code, argument, index: -1, message: message.into() }
     }
 
+    /// With the index within the argument.
+    pub fn with_index(mut self, index: usize) -> Self {
+        self.index = i64::try_from(index).unwrap_or(-1);
+        self
+    }
+
+    /// A library error about one element of the given argument.
+    pub fn at(error: &hence_core::Error, argument: i32, index: usize) -> Self {
+        Failure::core(error, argument).with_index(index)
+    }
+
     /// A library error about the given argument.
     pub fn core(error: &hence_core::Error, argument: i32) -> Self {
         let index = error.index().or(error.at()).and_then(|i| i64::try_from(i).ok()).unwrap_or(-1);

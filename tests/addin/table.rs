@@ -1,16 +1,46 @@
 //! The table of worksheet functions is sound, and each of its C symbols is in the header.
 
-use hence::worksheet::FUNCTIONS;
+#[path = "../sections.rs"]
+mod sections;
+
+use hence::worksheet::{FUNCTIONS, Function};
 
 use crate::root;
 
+/// The call as a formula writes it, what may be left out in brackets.
+fn call(function: &Function) -> String {
+    let arguments: Vec<String> = function
+        .arguments
+        .iter()
+        .map(|argument| if argument.optional { format!("[{}]", argument.name) } else { argument.name.into() })
+        .collect();
+    format!("{}({})", function.full_name(), arguments.join(", "))
+}
+
+#[test]
+fn the_readme_has_every_function() {
+    let cell = |text: &str| text.replace('|', "\\|");
+    let rows: String = FUNCTIONS
+        .iter()
+        .map(|f| format!("| `{}` | {} | `{}` |\n", call(f), cell(f.help), cell(f.example)))
+        .collect();
+    let table = format!("| function | gives | example |\n| --- | --- | --- |\n{rows}");
+    sections::compare(&root().join("README.md"), &[("functions", table)]);
+}
+
+/// The header documents each C symbol, and names the function that cells call for it.
 #[test]
 fn every_symbol_is_in_the_header() {
     let header = std::fs::read_to_string(root().join("include/hence.h")).expect("include/hence.h");
     for function in FUNCTIONS {
-        let symbol = function.symbol;
-        assert!(header.contains(&format!("{symbol}(")), "{} names {symbol}", function.name);
+        let declaration = format!("int32_t {}(", function.symbol);
+        let (before, _) =
+            header.split_once(&declaration).unwrap_or_else(|| panic!("{declaration} is missing"));
+        let comment = before.rsplit("\n\n").next().unwrap_or_default();
+        let said = format!("// In cells: {}.", function.full_name());
+        assert!(comment.contains(&said), "{declaration} lacks: {said}");
     }
+    assert_eq!(header.matches("// In cells: ").count(), FUNCTIONS.len());
 }
 
 /// The same text works in both programs: letters after one dot, never shaped like a cell, and arguments that may be
