@@ -2,7 +2,8 @@
 
     ask.py SOFFICE PROFILE cells FILE...    every cell of each workbook, computed anew
     ask.py SOFFICE PROFILE wizard PREFIX    what the function wizard shows of the functions with a prefix
-    ask.py SOFFICE PROFILE long ROWS LINE   factors of a line at 0, 1, 2 and so on, in one array formula
+    ask.py SOFFICE PROFILE long ROWS LINE   factors of a line at 0, 1, 2 and so on in one array formula, and the value of
+                                            two whole columns that hold 0 to 499
 """
 
 import os
@@ -107,10 +108,11 @@ def long(context, rows, line):
     results.setArrayFormula('=HENCE.FACTOR("{}";A1:A{})'.format(line, rows))
     for (value,) in results.getDataArray():
         print(bits(value))
-    # A whole column, blank below: one number from it.
-    total = sheet.getCellByPosition(2, 0)
-    total.setFormula('=HENCE.VALUE("{}";A1:A1048576;A1:A1048576)'.format(line))
-    print("column", *one(total), sep="\t")
+    # Two whole columns, blank below: one number from them.
+    sheet.getCellRangeByPosition(3, 0, 3, 499).setDataArray(tuple((float(i),) for i in range(500)))
+    value = sheet.getCellByPosition(2, 0)
+    value.setFormula('=HENCE.VALUE("{}";D1:D1048576;D1:D1048576)'.format(line))
+    print("column", *one(value), sep="\t")
 
 
 def main():
