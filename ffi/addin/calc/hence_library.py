@@ -146,15 +146,15 @@ class Library:
         return tuple(zip(*[iter(cells)] * columns))
 
     def _cell_text(self, answer, i):
-        capacity = 256
-        while True:
-            buffer = ctypes.create_string_buffer(capacity)
-            error = Error(struct_size=ctypes.sizeof(Error))
-            status = self._text(answer, i, buffer, capacity, ctypes.byref(error))
-            if status != ERR_CAPACITY:
-                self._checked(status)
-                return buffer.value.decode("utf-8")
+        capacity, error = 256, Error(struct_size=ctypes.sizeof(Error))
+        buffer = ctypes.create_string_buffer(capacity)
+        status = self._text(answer, i, buffer, capacity, ctypes.byref(error))
+        if status == ERR_CAPACITY:
             capacity = error.index
+            buffer = ctypes.create_string_buffer(capacity)
+            status = self._text(answer, i, buffer, capacity, ctypes.byref(error))
+        self._checked(status)
+        return buffer.value.decode("utf-8")
 
     @staticmethod
     def _checked(status):

@@ -7,10 +7,12 @@
 """
 
 import os
+import signal
 import struct
 import subprocess
 import sys
 import time
+import traceback
 
 import uno
 from com.sun.star.beans import PropertyValue
@@ -121,8 +123,14 @@ def main():
     try:
         {"cells": cells, "wizard": wizard, "long": long}[what](context, *arguments)
     finally:
-        service(context, "com.sun.star.frame.Desktop").terminate()
-        process.wait(PATIENCE)
+        try:
+            service(context, "com.sun.star.frame.Desktop").terminate()
+            process.wait(PATIENCE)
+        except Exception:
+            # It no longer answers. This script runs under `timeout`, whose group holds nothing else.
+            traceback.print_exc()
+            sys.stderr.flush()
+            os.killpg(0, signal.SIGTERM)
 
 
 main()
