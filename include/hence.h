@@ -234,6 +234,15 @@ int32_t hence_basis_line(const hence_basis *basis,
                          size_t capacity,
                          hence_error *error);
 
+// The timing that the basis states, its own before its schedule's, as hence_offsets_from_years takes it: "flows middle,
+// base end"; "flows end, base end" where it states none.
+//
+// Arguments, statuses and threads as hence_basis_describe.
+int32_t hence_basis_timing(const hence_basis *basis,
+                           char *buffer,
+                           size_t capacity,
+                           hence_error *error);
+
 // The rate line of a built-in schedule, with the timing it states.
 //
 // In cells: HENCE.SCHEDULE.
