@@ -90,6 +90,9 @@ pub struct Fill {
     /// Replace formulas found in target cells, where they are not hence's own
     #[arg(long)]
     pub replace_formulas: bool,
+    /// A rate line or schedule to value it on besides, for the audit's sensitivity sheet
+    #[arg(long, value_name = "LINE|ID")]
+    pub against: Vec<String>,
     /// A text for the audit summary: the date or state of the data
     #[arg(long, value_name = "TEXT")]
     pub as_of: Option<String>,
@@ -344,7 +347,7 @@ pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
             }
         }
         let mut named = OsString::new();
-        if against && book {
+        if against && book && command.as_deref() == Some("compare") {
             named.push(format!("{SEVERAL}="));
             named.push(arg);
             prepared.push(named);

@@ -3,7 +3,7 @@
 //! Figures are made up for the test. Outcomes are worked out here from the curve's factors alone.
 
 use chrono::NaiveDate;
-use hence_core::{Basis, Catalogue, Payback, Position, Tail, Timing, Where, internal_rates};
+use hence_core::{Basis, Catalogue, Endless, Payback, Position, Tail, Timing, Where, internal_rates};
 use hence_workbook::appraisal::*;
 use hence_workbook::outcome::*;
 use hence_workbook::references::{Cell, Range, SheetRange};
@@ -288,7 +288,21 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
     let pv_benefits = streams[1].pv - streams[2].pv;
     let service_years = length.ceil() as u32;
     let annuity: f64 = (1..=service_years).map(|n| curve.factor(f64::from(n)).unwrap()).sum();
+    let ends: &[f64] = if averaged { &[0.0, 1.0] } else { &[0.0] };
+    let halves = offsets.iter().zip(&net);
+    let halves = halves.flat_map(|(t, x)| ends.iter().map(move |end| (t - end, x / ends.len() as f64)));
+    let (at, flows) = halves.unzip();
+    let signs = [-1.0, 1.0, -1.0];
+    let tailed = choice.streams.iter().zip(&streams).zip(signs).filter(|((s, _), _)| s.tail.is_some());
+    let endless = tailed.map(|((_, o), sign)| Endless {
+        start: offsets[offsets.len() - 1],
+        flow: sign * o.flows[o.flows.len() - 1],
+        growth: 0.0,
+        every: 1.0,
+    });
+    let endless = endless.collect();
     ChoiceOutcome {
+        dated: Flows { offsets: at, flows, endless },
         basis: basis.clone(),
         timing: case.timing,
         base_words: "2026".into(),
