@@ -23,6 +23,7 @@ mod resolve;
 mod roles;
 mod samples;
 mod scenario;
+mod sensitivity;
 mod sheets;
 mod small;
 mod stale;
