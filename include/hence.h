@@ -12,6 +12,22 @@
 // The version of the binary interface: raised when a function, struct or constant changes its meaning.
 #define HENCE_ABI_VERSION 1
 
+// A cell holds a number; a date is its serial number, day 0 being 30 December 1899.
+#define HENCE_CELL_NUMBER 0
+
+// A cell holds a text.
+#define HENCE_CELL_TEXT 1
+
+// A cell is blank.
+#define HENCE_CELL_BLANK 2
+
+// A cell holds TRUE (number 1) or FALSE (number 0).
+#define HENCE_CELL_LOGICAL 3
+
+// A cell holds an error value; its number is that of ERROR.TYPE: 1 #NULL!, 2 #DIV/0!, 3 #VALUE!, 4 #REF!, 5 #NAME?,
+// 6 #NUM!, 7 #N/A.
+#define HENCE_CELL_ERROR 4
+
 // The longest array accepted, in elements.
 #define HENCE_LENGTH_MAX 1073741824
 
@@ -66,8 +82,28 @@
 // A fault inside the library; nothing was written.
 #define HENCE_ERR_INTERNAL 90
 
+// The range that a worksheet function gives back. Opaque and immutable: any number of threads may use one.
+typedef struct hence_answer hence_answer;
+
 // A parsed basis with its curve. Opaque and immutable: any number of threads may use one.
 typedef struct hence_basis hence_basis;
+
+// A range of cells that a caller hands over, row by row. One value is a range of one cell.
+typedef struct {
+  // sizeof(hence_range), set by the caller.
+  uint32_t struct_size;
+  // The number of rows, at least 1.
+  size_t rows;
+  // The number of columns, at least 1.
+  size_t columns;
+  // rows x columns numbers; where a cell holds no number, its place is not looked at.
+  const double *numbers;
+  // rows x columns kinds, HENCE_CELL_...; NULL where every cell holds a number.
+  const uint8_t *kinds;
+  // rows x columns texts, each NUL-ended UTF-8; NULL where no cell holds a text. Only the places of texts are looked
+  // at.
+  const char *const *texts;
+} hence_range;
 
 // What went wrong, written into the caller's own struct. Nothing in it is allocated or freed.
 typedef struct {
@@ -91,6 +127,62 @@ extern "C" {
 //
 // A program compares it with HENCE_ABI_VERSION of its header. Threads: any.
 uint32_t hence_abi_version(void);
+
+// Calls a worksheet function, as the add-ins do.
+//
+// What is wrong with an argument becomes an error value in the cells concerned; a status other than HENCE_OK says that
+// the call itself was not sound.
+//
+// Arguments: `function` (in, NUL-ended UTF-8, borrowed, not NULL): "FACTOR" or "HENCE.FACTOR", in any case;
+// `arguments` (in, `n` pointers, borrowed with all they point to; NULL only when `n` is 0): a NULL pointer among them
+// is an argument left out; `n` (in); `out` (out, not NULL): a new answer, caller owns (free with hence_answer_free);
+// `error` (out, may be NULL).
+// Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_UTF8; HENCE_ERR_SYNTAX where there
+// is no such function; HENCE_ERR_SHAPE for a range without cells, HENCE_ERR_RANGE for a struct_size that is too small or
+// a kind that is not known, each with the number of the argument, from 0, as index.
+// Threads: any.
+int32_t hence_worksheet_call(const char *function,
+                             const hence_range *const *arguments,
+                             size_t n,
+                             hence_answer **out,
+                             hence_error *error);
+
+// Frees an answer. NULL is allowed. Threads: no other thread may be using it.
+void hence_answer_free(hence_answer *answer);
+
+// The numbers of rows and columns of an answer.
+//
+// Arguments: `answer` (in, not NULL); `rows`, `columns` (out, not NULL, both at least 1); `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT. Threads: any.
+int32_t hence_answer_shape(const hence_answer *answer,
+                           size_t *rows,
+                           size_t *columns,
+                           hence_error *error);
+
+// The cells of an answer, row by row.
+//
+// Arguments: `answer` (in, not NULL); `numbers` (out, `n` doubles): the number of a cell, the ERROR.TYPE number of an
+// error value, 0 for a text; `kinds` (out, `n` bytes): HENCE_CELL_NUMBER, HENCE_CELL_TEXT or HENCE_CELL_ERROR; `n` (in):
+// rows x columns; `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT; HENCE_ERR_CAPACITY with the number of cells as index where `n`
+// is another. Threads: any.
+int32_t hence_answer_cells(const hence_answer *answer,
+                           double *numbers,
+                           uint8_t *kinds,
+                           size_t n,
+                           hence_error *error);
+
+// The text of a cell of an answer; empty where it holds no text.
+//
+// Arguments: `answer` (in, not NULL); `cell` (in): its place, row by row from 0; `buffer` (out): `capacity` bytes of the
+// caller's, gets NUL-ended UTF-8; `capacity` (in); `error` (out, may be NULL). A buffer that is too small is
+// HENCE_ERR_CAPACITY, with the bytes needed as index, and stays untouched.
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_CAPACITY; HENCE_ERR_LENGTH where there is no such cell. Threads: any.
+int32_t hence_answer_text(const hence_answer *answer,
+                          size_t cell,
+                          char *buffer,
+                          size_t capacity,
+                          hence_error *error);
 
 // Parses a rate line, a rate as text, or the id of a built-in schedule.
 //

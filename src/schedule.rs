@@ -1,5 +1,5 @@
 //! Named bases with their published source, one TOML text each.
-use crate::rateline::{Positions, plain, positions, quoted};
+use crate::rateline::{Positions, plain, positions, quoted, timing_clauses};
 use crate::{Band, Compounding, Edge, Error, ErrorKind, PriceBasis, RateLine, Result, Spec, Timing};
 use serde::Deserialize;
 use std::fmt;
@@ -205,6 +205,16 @@ impl Schedule {
     /// The timing it states, if any.
     pub fn timing(&self) -> Option<Timing> {
         self.positions.timing()
+    }
+    /// Its rate line with the timing it states, which parses to the same curve and timing.
+    ///
+    /// **Errors**: `Unsupported` for a table of factors, which no line can state.
+    pub fn line(&self) -> Result<String> {
+        if let Spec::Table(_) = self.spec {
+            let message = format!("{} is a table of factors, which has no rate line", self.id());
+            return Err(Error::new(ErrorKind::Unsupported, "id", message).with_hint("its id"));
+        }
+        Ok(format!("{}{}", self.spec, timing_clauses(self.positions)))
     }
     pub(crate) fn positions(&self) -> Positions {
         self.positions

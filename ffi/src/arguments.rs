@@ -6,8 +6,8 @@ use libc::c_char;
 
 use crate::error::Failure;
 use crate::status::{
-    HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_NOT_FINITE, HENCE_ERR_NULL, HENCE_ERR_OVERLAP,
-    HENCE_ERR_UTF8,
+    HENCE_ERR_ALIGNMENT, HENCE_ERR_CAPACITY, HENCE_ERR_LENGTH, HENCE_ERR_NOT_FINITE, HENCE_ERR_NULL,
+    HENCE_ERR_OVERLAP, HENCE_ERR_UTF8,
 };
 
 /// The longest array accepted, in elements.
@@ -27,6 +27,28 @@ fn check<T>(pointer: *const T, length: usize, argument: i32) -> Result<(), Failu
     Ok(())
 }
 
+/// Checks a pointer that is read from.
+pub(crate) fn input<T>(pointer: *const T, length: usize, argument: i32) -> Result<(), Failure> {
+    if length == 0 { Ok(()) } else { check(pointer, length, argument) }
+}
+
+/// A borrowed input array. `argument` counts from 1; the length is the next argument.
+///
+/// # Safety
+/// `pointer` is NULL, or readable for `length` elements until the call returns.
+pub(crate) unsafe fn slice<'a, T>(
+    pointer: *const T,
+    length: usize,
+    argument: i32,
+) -> Result<&'a [T], Failure> {
+    if length == 0 {
+        return Ok(&[]);
+    }
+    check(pointer, length, argument)?;
+    // SAFETY: not NULL, aligned, and readable for `length` elements by the caller's contract.
+    Ok(unsafe { std::slice::from_raw_parts(pointer, length) })
+}
+
 /// A borrowed input array of finite numbers. `argument` counts from 1; the length is the next argument.
 ///
 /// # Safety
@@ -36,12 +58,8 @@ pub(crate) unsafe fn numbers<'a>(
     length: usize,
     argument: i32,
 ) -> Result<&'a [f64], Failure> {
-    if length == 0 {
-        return Ok(&[]);
-    }
-    check(pointer, length, argument)?;
-    // SAFETY: not NULL, aligned, and readable for `length` elements by the caller's contract.
-    let slice = unsafe { std::slice::from_raw_parts(pointer, length) };
+    // SAFETY: the caller's contract, passed on.
+    let slice = unsafe { slice(pointer, length, argument) }?;
     if let Some(i) = slice.iter().position(|x| !x.is_finite()) {
         let message = format!("{} is not finite", slice[i]);
         let mut failure = Failure::new(HENCE_ERR_NOT_FINITE, argument, message);
@@ -86,4 +104,30 @@ pub(crate) unsafe fn text<'a>(pointer: *const c_char, argument: i32) -> Result<&
         failure.index = e.valid_up_to() as i64;
         failure
     })
+}
+
+/// Writes a text into the caller's buffer, ended by NUL. `argument` is that of the buffer; its capacity is the next.
+///
+/// # Safety
+/// `buffer` is NULL, or writable for `capacity` bytes.
+pub(crate) unsafe fn write_text(
+    text: &str,
+    buffer: *mut c_char,
+    capacity: usize,
+    argument: i32,
+) -> Result<(), Failure> {
+    let needed = text.len() + 1;
+    if capacity < needed {
+        let message = format!("the buffer holds {capacity} bytes, {needed} are needed");
+        let mut failure = Failure::new(HENCE_ERR_CAPACITY, argument + 1, message);
+        failure.index = needed as i64;
+        return Err(failure);
+    }
+    output(buffer, capacity, argument)?;
+    // SAFETY: `buffer` is not NULL and holds `capacity` >= `needed` bytes by the caller's contract.
+    unsafe {
+        std::ptr::copy_nonoverlapping(text.as_ptr().cast::<c_char>(), buffer, text.len());
+        buffer.add(text.len()).write(0);
+    }
+    Ok(())
 }

@@ -6,7 +6,7 @@ use hence_core::{Basis, Catalogue, Curve, Where};
 
 use crate::arguments;
 use crate::error::{Failure, guard, hence_error};
-use crate::status::{HENCE_ERR_CAPACITY, HENCE_ERR_NULL};
+use crate::status::HENCE_ERR_NULL;
 
 /// A parsed basis with its curve. Opaque and immutable: any number of threads may use one.
 pub struct hence_basis {
@@ -67,21 +67,9 @@ pub unsafe extern "C" fn hence_basis_describe(
     let body = || {
         // SAFETY: the caller's contract for `basis`.
         let basis = unsafe { borrow(basis) }?;
-        let text = basis.basis.words();
-        let needed = text.len() + 1;
-        if capacity < needed {
-            let message = format!("the buffer holds {capacity} bytes, {needed} are needed");
-            let mut failure = Failure::new(HENCE_ERR_CAPACITY, 3, message);
-            failure.index = needed as i64;
-            return Err(failure);
-        }
-        arguments::output(buffer, capacity, 2)?;
-        // SAFETY: `buffer` is not NULL and holds `capacity` >= `needed` bytes by the caller's contract.
-        unsafe {
-            std::ptr::copy_nonoverlapping(text.as_ptr().cast::<c_char>(), buffer, text.len());
-            buffer.add(text.len()).write(0);
-        }
-        Ok(())
+        let words = basis.basis.words();
+        // SAFETY: the caller's contract for `buffer`.
+        unsafe { arguments::write_text(&words, buffer, capacity, 2) }
     };
     // SAFETY: the caller's contract for `error`.
     unsafe { guard(error, body) }

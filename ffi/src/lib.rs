@@ -5,6 +5,7 @@
 #![allow(clippy::missing_safety_doc)] // the contract is each function's documentation, which the header carries
 #![allow(non_camel_case_types)] // the names are those of the C interface
 
+mod answer;
 mod arguments;
 mod basis;
 mod curves;
@@ -13,6 +14,11 @@ mod evidence;
 mod status;
 pub mod worksheet;
 
+pub use answer::{
+    HENCE_CELL_BLANK, HENCE_CELL_ERROR, HENCE_CELL_LOGICAL, HENCE_CELL_NUMBER, HENCE_CELL_TEXT, hence_answer,
+    hence_answer_cells, hence_answer_free, hence_answer_shape, hence_answer_text, hence_range,
+    hence_worksheet_call,
+};
 pub use arguments::HENCE_LENGTH_MAX;
 pub use basis::{hence_basis, hence_basis_describe, hence_basis_free, hence_basis_parse};
 pub use curves::{hence_factors, hence_forward_rates, hence_mean_rates, hence_present_value};

@@ -1,8 +1,32 @@
 //! The table of worksheet functions is sound, and each of its C symbols is in the header.
 
-use hence::worksheet::FUNCTIONS;
+#[path = "../sections.rs"]
+mod sections;
+
+use hence::worksheet::{FUNCTIONS, Function};
 
 use crate::root;
+
+/// The call as a formula writes it, what may be left out in brackets.
+fn call(function: &Function) -> String {
+    let arguments: Vec<String> = function
+        .arguments
+        .iter()
+        .map(|argument| if argument.optional { format!("[{}]", argument.name) } else { argument.name.into() })
+        .collect();
+    format!("{}({})", function.full_name(), arguments.join(", "))
+}
+
+#[test]
+fn the_readme_has_every_function() {
+    let cell = |text: &str| text.replace('|', "\\|");
+    let rows: String = FUNCTIONS
+        .iter()
+        .map(|f| format!("| `{}` | {} | `{}` |\n", call(f), cell(f.help), cell(f.example)))
+        .collect();
+    let table = format!("| function | gives | example |\n| --- | --- | --- |\n{rows}");
+    sections::compare(&root().join("README.md"), &[("functions", table)]);
+}
 
 #[test]
 fn every_symbol_is_in_the_header() {

@@ -1,7 +1,7 @@
 //! The README against the program: its tables are made from the tables in the source, and what it shows is true.
-//!
-//! `HENCE_ACCEPT=1` writes the tables into the README and fails on purpose, so that an accepting run is never taken
-//! for a passing one.
+
+#[path = "../sections.rs"]
+mod sections;
 
 use std::path::{Path, PathBuf};
 
@@ -91,30 +91,10 @@ fn codes() -> String {
     Group::ALL.map(group).concat()
 }
 
-/// The text with the section between `<!-- name: ... -->` and `<!-- end -->` replaced.
-fn with_section(text: &str, name: &str, section: &str) -> String {
-    let start =
-        text.find(&format!("<!-- {name}: ")).unwrap_or_else(|| panic!("README.md has no section {name}"));
-    let from = start + text[start..].find("-->\n").expect("the comment ends") + 4;
-    let to = from + text[from..].find("<!-- end -->").unwrap_or_else(|| panic!("{name}: there is no end"));
-    assert!(!text[from..to].contains("<!--"), "README.md: the section {name} has no end of its own");
-    format!("{}\n{section}\n{}", &text[..from], &text[to..])
-}
-
 #[test]
 fn the_tables_are_those_of_the_source() {
-    let held = readme();
     let sections = [("roles", roles()), ("schedules", schedules()), ("codes", codes())];
-    let made = sections.iter().fold(held.clone(), |text, (name, section)| with_section(&text, name, section));
-    if std::env::var_os("HENCE_ACCEPT").is_some() {
-        std::fs::write(root().join("README.md"), &made).expect("README.md is writable");
-        panic!("README.md was accepted: look at the difference, then run again without HENCE_ACCEPT");
-    }
-    let differing = held.lines().zip(made.lines()).find(|(held, made)| held != made);
-    assert!(
-        held == made,
-        "the tables of README.md are not those of the source ({differing:?}): run once with HENCE_ACCEPT=1 and look"
-    );
+    sections::compare(&root().join("README.md"), &sections);
 }
 
 #[test]

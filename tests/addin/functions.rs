@@ -1,0 +1,400 @@
+//! Every worksheet function and every argument rule, as a host calls them.
+//!
+//! Values are those of `hence_core`, which `tests/core` and `tests/reference` check against published ones; the few
+//! worked out by hand say so.
+
+use hence::worksheet::{Cell, CellError, FUNCTIONS, Function, Range, call};
+use hence_core::{Basis, Catalogue, Curve, DayCount, Spec, Where};
+
+use chrono::NaiveDate;
+
+type Given = Option<Range<'static>>;
+
+fn x(number: f64) -> Cell<'static> {
+    Cell::Number(number)
+}
+
+fn text(words: &str) -> Cell<'static> {
+    Cell::Text(words.to_owned().into())
+}
+
+const VALUE: Cell<'static> = Cell::Error(CellError::Value);
+const NUM: Cell<'static> = Cell::Error(CellError::Number);
+const NA: Cell<'static> = Cell::Error(CellError::NotAvailable);
+const REF: Cell<'static> = Cell::Error(CellError::Reference);
+
+fn one(cell: Cell<'static>) -> Given {
+    Some(Range::single(cell))
+}
+
+fn n(number: f64) -> Given {
+    one(x(number))
+}
+
+fn t(words: &str) -> Given {
+    one(text(words))
+}
+
+fn column(cells: impl IntoIterator<Item = Cell<'static>>) -> Given {
+    let cells: Vec<_> = cells.into_iter().collect();
+    Range::new(cells.len(), 1, cells)
+}
+
+fn row(cells: impl IntoIterator<Item = Cell<'static>>) -> Given {
+    let cells: Vec<_> = cells.into_iter().collect();
+    Range::new(1, cells.len(), cells)
+}
+
+fn numbers(values: impl IntoIterator<Item = f64>) -> Vec<Cell<'static>> {
+    values.into_iter().map(Cell::Number).collect()
+}
+
+fn sheet(name: &str, arguments: &[Given]) -> Range<'static> {
+    call(Function::find(name).expect("the function is in the table"), arguments)
+}
+
+/// The one cell of an answer.
+fn cell(name: &str, arguments: &[Given]) -> Cell<'static> {
+    let answer = sheet(name, arguments);
+    assert_eq!((answer.rows(), answer.columns()), (1, 1), "{name}");
+    answer.cells()[0].clone()
+}
+
+fn words(name: &str, arguments: &[Given]) -> String {
+    match cell(name, arguments) {
+        Cell::Text(words) => words.into_owned(),
+        other => panic!("{name} gives {other:?}"),
+    }
+}
+
+fn curve(line: &str) -> Curve {
+    Basis::parse(line, &Catalogue::builtin()).unwrap().curve(&Where::default()).unwrap()
+}
+
+#[test]
+fn factors_and_rates_are_those_of_the_curve() {
+    let offsets = [0.0, 0.5, 30.0, 31.0, 75.5, 300.0, 400.0];
+    for line in ["3.5%", "3.5% to 30, 3% after", "uk-2003", "gamma mean 4% sd 3%", "0.035"] {
+        let curve = curve(line);
+        let given = || [t(line), column(numbers(offsets))];
+        for (name, f) in [
+            ("FACTOR", Curve::factor as fn(&Curve, f64) -> hence_core::Result<f64>),
+            ("RATE", Curve::forward_rate),
+            ("MEANRATE", Curve::mean_rate),
+        ] {
+            let due: Vec<_> = offsets.iter().map(|t| f(&curve, *t).map_or(NA, Cell::Number)).collect();
+            assert_eq!(sheet(name, &given()).cells(), due, "{name} of {line}");
+        }
+    }
+    // By hand: half a unit a year later at 100%, a quarter two years later.
+    assert_eq!(sheet("FACTOR", &[n(1.0), row(numbers([0.0, 1.0, 2.0]))]).cells(), numbers([1.0, 0.5, 0.25]));
+    // The published first step of the UK's schedule of 2003: 3.5% to year 30, 3% after it.
+    let Cell::Number(rate) = cell("RATE", &[t("uk-2003"), n(31.0)]) else { panic!("a number") };
+    assert!((rate - 0.03).abs() < 1e-15, "{rate}");
+}
+
+/// Bases across, offsets down: a table of factors in one call. Single values are repeated.
+#[test]
+fn ranges_spread_like_the_hosts_own_operators() {
+    let bases = row(["3.5%", "uk-2003"].map(text));
+    let answer = sheet("FACTOR", &[bases, column(numbers([0.0, 10.0, 100.0]))]);
+    assert_eq!((answer.rows(), answer.columns()), (3, 2));
+    for (i, cell) in answer.cells().iter().enumerate() {
+        let (line, t) = (["3.5%", "uk-2003"][i % 2], [0.0, 10.0, 100.0][i / 2]);
+        assert_eq!(*cell, x(curve(line).factor(t).unwrap()), "{line} at {t}");
+    }
+    let answer = sheet("WEIGHT", &[column(numbers([20_000.0, 40_000.0])), n(40_000.0), n(1.0)]);
+    assert_eq!(answer.cells(), numbers([2.0, 1.0]));
+    // Two rows beside three do not go together.
+    assert_eq!(cell("REAL", &[column(numbers([0.05, 0.06])), column(numbers([0.02, 0.02, 0.02]))]), VALUE);
+}
+
+#[test]
+fn evidence_and_prices_are_those_of_the_library() {
+    assert_eq!(cell("RAMSEY", &[n(0.015), n(1.0), n(0.02)]), x(0.035));
+    assert_eq!(
+        cell("RAMSEY", &[n(0.01), n(2.0), n(0.02), n(0.036)]),
+        x(hence_core::ramsey_rate_uncertain(0.01, 2.0, 0.02, 0.036).unwrap())
+    );
+    assert_eq!(cell("ELASTICITY", &[n(0.3), n(0.3)]), x(1.0));
+    assert_eq!(
+        cell("ELASTICITY", &[n(0.4), n(0.25)]),
+        x(hence_core::elasticity_from_taxes(0.4, 0.25).unwrap())
+    );
+    assert_eq!(cell("REAL", &[n(0.06), n(0.02)]), x(hence_core::real_rate(0.06, 0.02).unwrap()));
+    let (annual, _) = hence_core::annual_equivalent(&curve("3.5%"), 1000.0, 60).unwrap();
+    assert_eq!(cell("ANNUAL", &[t("3.5%"), n(1000.0), n(60.0)]), x(annual));
+    // By hand: at 100% three service years have the annuity 1/2 + 1/4 + 1/8 = 7/8.
+    assert_eq!(cell("ANNUAL", &[n(1.0), n(7.0), n(3.0)]), x(8.0));
+}
+
+#[test]
+fn values_of_offsets_years_financial_years_and_dates() {
+    let flows = || row(numbers([-100.0, 60.0, 60.0]));
+    let due = |offsets: [f64; 3]| {
+        x(hence_core::present_value(&curve("3.5%"), &offsets, &[-100.0, 60.0, 60.0]).unwrap())
+    };
+    let value =
+        |years: Given, base: Given, timing: Given| cell("VALUE", &[t("3.5%"), years, flows(), base, timing]);
+    assert_eq!(value(row(numbers([0.0, 1.0, 2.0])), None, None), due([0.0, 1.0, 2.0]));
+    assert_eq!(value(row(numbers([0.5, 1.5, 2.5])), None, None), due([0.5, 1.5, 2.5]));
+    let years = || row(numbers([2026.0, 2027.0, 2028.0]));
+    assert_eq!(value(years(), n(2026.0), None), due([0.0, 1.0, 2.0]));
+    assert_eq!(value(years(), n(2026.0), t("flows middle")), due([-0.5, 0.5, 1.5]));
+    assert_eq!(value(years(), n(2026.0), t("flows middle, base start")), due([0.5, 1.5, 2.5]));
+    let financial = || row(["2026/27", "2027/28", "FY29"].map(text));
+    assert_eq!(value(financial(), t("2026/27"), None), due([0.0, 1.0, 2.0]));
+    // 1 April 2026, 1 April 2027 and 1 October 2028, as spreadsheets number them (46113 is 1 April 2026).
+    let date = |y, m, d| {
+        let days = NaiveDate::from_ymd_opt(y, m, d).unwrap() - NaiveDate::from_ymd_opt(1899, 12, 30).unwrap();
+        days.num_days() as f64
+    };
+    assert_eq!(date(2026, 4, 1), 46113.0);
+    let dates = [(2026, 4, 1), (2027, 4, 1), (2028, 10, 1)];
+    let base = NaiveDate::from_ymd_opt(2026, 4, 1).unwrap();
+    let offsets = dates.map(|(y, m, d)| {
+        let date = NaiveDate::from_ymd_opt(y, m, d).unwrap();
+        hence_core::offset_of_dates(base, date, DayCount::Anniversary).unwrap()
+    });
+    let serials = || row(numbers(dates.map(|(y, m, d)| date(y, m, d))));
+    assert_eq!(value(serials(), n(46113.0), None), due(offsets));
+    // Dates say themselves where a flow stands.
+    assert_eq!(value(serials(), n(46113.0), t("flows middle")), VALUE);
+    // Kinds that do not go together, and years without a base.
+    for (years, base) in
+        [(years(), t("2026/27")), (financial(), n(2026.0)), (serials(), n(2026.0)), (years(), None)]
+    {
+        assert_eq!(value(years, base, None), VALUE);
+    }
+    // A timing needs whole years.
+    assert_eq!(value(row(numbers([0.5, 1.5, 2.5])), None, t("flows middle")), VALUE);
+}
+
+/// The timing of the argument beats that of the line, and averaged flows take the mean of two factors.
+#[test]
+fn timing_of_the_argument_of_the_line_and_averaged() {
+    let value = |line: &str, timing: Given| cell("VALUE", &[t(line), n(2027.0), n(100.0), n(2026.0), timing]);
+    let factor = |offset: f64| curve("3.5%").factor(offset).unwrap();
+    assert_eq!(value("3.5%; flows middle", None), x(100.0 * factor(0.5)));
+    assert_eq!(value("3.5%; flows middle", t("flows start")), x(100.0 * factor(0.0)));
+    let averaged = 0.5 * factor(0.0) + 0.5 * factor(1.0);
+    let Cell::Number(found) = value("3.5%", t("flows averaged")) else { panic!("a number") };
+    assert!((found - 100.0 * averaged).abs() < 1e-13, "{found}");
+    assert_eq!(value("3.5%", t("flows late")), VALUE);
+}
+
+#[test]
+fn several_streams_give_a_value_each() {
+    let years = numbers([0.0, 1.0]);
+    let flows = numbers([1.0, 2.0, 10.0, 20.0, 100.0, 200.0]);
+    let at_one = |first: f64, second: f64| x(first + second * 0.5);
+    let across = sheet("VALUE", &[n(1.0), row(years.clone()), Range::new(3, 2, flows.clone())]);
+    assert_eq!((across.rows(), across.columns()), (3, 1));
+    assert_eq!(across.cells(), [at_one(1.0, 2.0), at_one(10.0, 20.0), at_one(100.0, 200.0)]);
+    let down = sheet("VALUE", &[n(1.0), column(years.clone()), Range::new(2, 3, flows.clone())]);
+    assert_eq!((down.rows(), down.columns()), (1, 3));
+    assert_eq!(down.cells(), [at_one(1.0, 20.0), at_one(2.0, 100.0), at_one(10.0, 200.0)]);
+    // One stream with a text does not spoil the others.
+    let mut spoilt = flows;
+    spoilt[1] = text("tbc");
+    let across = sheet("VALUE", &[n(1.0), row(years.clone()), Range::new(3, 2, spoilt)]);
+    assert_eq!(across.cells(), [VALUE, at_one(10.0, 20.0), at_one(100.0, 200.0)]);
+    // Years along a row, flows along a column; and too few flows.
+    assert_eq!(cell("VALUE", &[n(1.0), row(years.clone()), column(numbers([1.0, 2.0]))]), VALUE);
+    assert_eq!(cell("VALUE", &[n(1.0), row(years), n(1.0)]), VALUE);
+}
+
+#[test]
+fn blanks_texts_logicals_and_errors_follow_the_rules() {
+    // A blank cell within a range leaves its place empty, and texts and errors stay where they are.
+    let offsets = column([x(1.0), Cell::Blank, text("x"), Cell::Logical(true), REF, text(" ")]);
+    let answer = sheet("FACTOR", &[n(1.0), offsets]);
+    assert_eq!(answer.cells(), [x(0.5), text(""), VALUE, VALUE, REF, text("")]);
+    // A single blank cell where a value is due is an error, never 0.
+    assert_eq!(cell("FACTOR", &[n(1.0), one(Cell::Blank)]), VALUE);
+    assert_eq!(cell("FACTOR", &[n(1.0), one(text(""))]), VALUE);
+    assert_eq!(cell("FACTOR", &[one(Cell::Blank), n(1.0)]), VALUE);
+    assert_eq!(cell("FACTOR", &[one(Cell::Logical(true)), n(1.0)]), VALUE);
+    assert_eq!(cell("FACTOR", &[one(REF), n(1.0)]), REF);
+    // A blank optional argument is one left out; a blank flow is 0.
+    assert_eq!(cell("FACTOR", &[n(1.0), n(1.0), one(Cell::Blank), one(text(""))]), x(0.5));
+    let with_blank = [n(1.0), row(numbers([0.0, 1.0, 2.0])), row([x(4.0), Cell::Blank, x(4.0)])];
+    assert_eq!(cell("VALUE", &with_blank), x(5.0));
+    // A blank year is passed over with a blank flow; a flow beside a blank year would be lost.
+    let years = || row([x(0.0), Cell::Blank, x(2.0)]);
+    assert_eq!(cell("VALUE", &[n(1.0), years(), row([x(4.0), Cell::Blank, x(4.0)])]), x(5.0));
+    assert_eq!(cell("VALUE", &[n(1.0), years(), row(numbers([4.0, 1.0, 4.0]))]), VALUE);
+    assert_eq!(
+        cell("VALUE", &[n(1.0), column([Cell::Blank, Cell::Blank]), column(numbers([1.0, 1.0]))]),
+        VALUE
+    );
+    // Errors among flows come back.
+    assert_eq!(cell("VALUE", &[n(1.0), row(numbers([0.0, 1.0])), row([x(4.0), REF])]), REF);
+    // Left out, or too many.
+    assert_eq!(cell("FACTOR", &[n(1.0), None]), VALUE);
+    assert_eq!(cell("FACTOR", &[]), VALUE);
+    assert_eq!(cell("REAL", &[n(0.05), n(0.02), n(0.02)]), VALUE);
+}
+
+/// Out of range or not finite is `#NUM!`, outside the curve `#N/A`, a text that is no basis `#VALUE!`.
+#[test]
+fn kinds_of_errors() {
+    for (due, name, arguments) in [
+        (NUM, "FACTOR", vec![n(3.5), n(1.0)]),
+        (NUM, "FACTOR", vec![n(-0.5), n(1.0)]),
+        (NUM, "FACTOR", vec![t("350%"), n(1.0)]),
+        (NUM, "FACTOR", vec![n(0.035), n(f64::INFINITY)]),
+        (NA, "FACTOR", vec![t("3.5% to 30"), n(31.0)]),
+        (NA, "FACTOR", vec![t("4% to 10, 3% after; whole horizon by flow"), n(-1.0)]),
+        (VALUE, "FACTOR", vec![t("3.5% until 30"), n(1.0)]),
+        (VALUE, "FACTOR", vec![t("uk-1066"), n(1.0)]),
+        (VALUE, "FACTOR", vec![t("2.5% to 2070, 1.5% after"), n(1.0)]),
+        (VALUE, "FACTOR", vec![t("4% at 10, 3% at 30; whole horizon by length, interpolated"), n(1.0)]),
+        (VALUE, "FACTOR", vec![n(0.035), n(1.0), t("soon")]),
+        (NUM, "FACTOR", vec![n(0.035), n(1.0), None, n(0.0)]),
+        (NUM, "RAMSEY", vec![n(0.01), n(21.0), n(0.02)]),
+        (NUM, "RAMSEY", vec![n(0.01), n(1.0), n(0.02), n(-0.1)]),
+        (VALUE, "RAMSEY", vec![t("1%"), n(1.0), n(0.02)]),
+        (NUM, "ELASTICITY", vec![n(40.0), n(0.25)]),
+        (NUM, "WEIGHT", vec![n(0.0), n(1.0), n(1.0)]),
+        (NUM, "REAL", vec![n(0.05), n(-1.0)]),
+        (NUM, "ANNUAL", vec![n(0.035), n(1.0), n(1.5)]),
+        (NUM, "ANNUAL", vec![n(0.035), n(1.0), n(0.0)]),
+        (NUM, "ANNUAL", vec![n(0.035), n(1.0), n(1e9)]),
+        (NUM, "IRR", vec![row(numbers([0.0, 1.0])), row(numbers([1.0, 1.0]))]),
+        (VALUE, "SCHEDULE", vec![t("uk-1066")]),
+        (VALUE, "SCHEDULE", vec![n(1.0)]),
+    ] {
+        assert_eq!(cell(name, &arguments), due, "{name} {arguments:?}");
+    }
+}
+
+#[test]
+fn a_base_and_a_length_serve_the_curves_that_need_them() {
+    let line = "2.5% to 2070, 1.5% after";
+    let at = Where { base_year: Some(2026), length: None };
+    let curve = Basis::parse(line, &Catalogue::builtin()).unwrap().curve(&at).unwrap();
+    let due = x(curve.factor(60.0).unwrap());
+    assert_eq!(cell("FACTOR", &[t(line), n(60.0), n(2026.0)]), due);
+    assert_eq!(cell("FACTOR", &[t(line), n(60.0), t("2026/27")]), due);
+    assert_eq!(cell("VALUE", &[t(line), n(2086.0), n(1.0), n(2026.0)]), due);
+    let line = "4% at 10, 3% at 30; whole horizon by length, interpolated";
+    let at = Where { base_year: None, length: Some(20.0) };
+    let curve = Basis::parse(line, &Catalogue::builtin()).unwrap().curve(&at).unwrap();
+    let due = x(curve.factor(20.0).unwrap());
+    assert_eq!(cell("FACTOR", &[t(line), n(20.0), None, n(20.0)]), due);
+    // The length of an appraisal is its largest offset.
+    assert_eq!(cell("VALUE", &[t(line), row(numbers([0.0, 20.0])), row(numbers([0.0, 1.0]))]), due);
+}
+
+#[test]
+fn every_rate_of_return_one_below_the_other() {
+    // By hand: -100 (1+r)^2 + 230 (1+r) - 132 = 0 at 10% and 20%.
+    let flows = || row(numbers([-100.0, 230.0, -132.0]));
+    let answer = sheet("IRR", &[row(numbers([2026.0, 2027.0, 2028.0])), flows()]);
+    let found: Vec<f64> =
+        answer.cells().iter().map(|cell| if let Cell::Number(r) = cell { *r } else { f64::NAN }).collect();
+    assert_eq!((answer.rows(), answer.columns()), (2, 1));
+    assert!((found[0] - 0.1).abs() < 1e-12 && (found[1] - 0.2).abs() < 1e-12, "{found:?}");
+    let above = sheet("IRR", &[row(numbers([0.0, 1.0, 2.0])), flows(), n(0.15)]);
+    assert_eq!(above.cells(), [answer.cells()[1].clone()]);
+    let below = sheet("IRR", &[row(numbers([0.0, 1.0, 2.0])), flows(), None, n(0.15)]);
+    assert_eq!(below.cells(), [answer.cells()[0].clone()]);
+    // A rate that only touches zero is told as not settled, not left out: (1+r)^2 - 2.2 (1+r) + 1.21.
+    let touching = sheet("IRR", &[row(numbers([0.0, 1.0, 2.0])), row(numbers([100.0, -220.0, 121.0]))]);
+    assert_eq!(touching.cells(), [NUM]);
+}
+
+/// The line of every built-in schedule gives the schedule's factors and timing.
+#[test]
+fn the_line_of_a_schedule_is_its_curve() {
+    let catalogue = Catalogue::builtin();
+    let mut lines = 0;
+    for schedule in catalogue.schedules() {
+        if matches!(schedule.spec(), Spec::Table(_)) {
+            assert_eq!(cell("SCHEDULE", &[t(schedule.id())]), VALUE);
+            continue;
+        }
+        let line = words("SCHEDULE", &[t(schedule.id())]);
+        let basis = Basis::parse(&line, &catalogue).unwrap_or_else(|e| panic!("{line}: {e}"));
+        assert_eq!((basis.spec(), basis.timing()), (schedule.spec(), schedule.timing()), "{line}");
+        lines += 1;
+    }
+    assert!(lines > 20, "{lines} schedules have a line");
+    assert_eq!(
+        words("SCHEDULE", &[t("UK-2003")]),
+        "3.5% to 30, 3% to 75, 2.5% to 125, 2% to 200, 1.5% to 300, 1% after"
+    );
+}
+
+/// HENCE.EXPLAIN gives the basis in words with its source, and otherwise what is wrong, with what to do.
+#[test]
+fn explain_says_what_is_used_or_what_is_wrong() {
+    let said = words("EXPLAIN", &[t("uk-2003; flows middle")]);
+    for part in
+        ["3.5% a year for years 0 to 30", "HM Treasury", "2003", "flows middle, base end", "superseded"]
+    {
+        assert!(said.contains(part), "{part} in {said}");
+    }
+    for (given, parts) in [
+        (vec![t("3,5%")], vec!["#VALUE!", "basis", "3.5%"]),
+        (vec![n(3.5)], vec!["#NUM!", "350%", "Try: enter 3.5% or 0.035"]),
+        (vec![t("uk-1066")], vec!["#VALUE!", "uk-1066"]),
+        (vec![one(REF)], vec!["#REF!", "basis"]),
+        (vec![one(Cell::Blank)], vec!["#VALUE!", "basis"]),
+        (vec![t("2.5% to 2070, 1.5% after")], vec!["2.5%", "Needs more"]),
+        (vec![t("2.5% to 2070, 1.5% after"), None, None, n(2026.0)], vec!["2.5%"]),
+        (vec![t("3.5%"), row(numbers([2026.0, 2027.0]))], vec!["#VALUE!", "no base", "Try:"]),
+        (
+            vec![t("3.5%"), row(numbers([2026.0, 2027.0])), None, n(2026.0)],
+            vec!["a flow in 2026 has factor 1.0000, in 2027 0.9662"],
+        ),
+        (
+            vec![t("3.5%"), column(numbers([2026.0, 2027.0])), column([x(1.0), text("tbc")]), n(2026.0)],
+            vec!["#VALUE!", "flows, row 2", "tbc"],
+        ),
+        (
+            vec![t("3.5%"), row(numbers([0.0, 1.0])), column(numbers([1.0, 1.0]))],
+            vec!["#VALUE!", "same direction"],
+        ),
+        (vec![t("3.5% to 30"), row(numbers([0.0, 31.0]))], vec!["#N/A", "cell 2"]),
+        (vec![t("3.5%"), row(numbers([2026.5])), None, n(2026.0)], vec!["#VALUE!", "whole years"]),
+    ] {
+        let said = words("EXPLAIN", &given);
+        for part in parts {
+            assert!(said.contains(part), "{part} in: {said}");
+        }
+    }
+    assert!(!words("EXPLAIN", &[t("2.5% to 2070, 1.5% after"), None, None, n(2026.0)]).contains("Needs"));
+}
+
+/// Each example of the table is a formula whose arguments the function takes; those without cell references work.
+#[test]
+fn no_function_takes_a_text_for_a_number() {
+    for function in
+        FUNCTIONS.iter().filter(|function| function.name != "EXPLAIN" && function.name != "SCHEDULE")
+    {
+        let sound: Vec<Given> = match function.name {
+            "FACTOR" | "RATE" | "MEANRATE" => vec![t("3.5%"), n(2.0)],
+            "VALUE" => vec![t("3.5%"), n(2.0), n(100.0)],
+            "ANNUAL" => vec![t("3.5%"), n(100.0), n(3.0)],
+            "IRR" => vec![row(numbers([0.0, 1.0])), row(numbers([-100.0, 107.0]))],
+            "RAMSEY" => vec![n(0.01), n(1.0), n(0.02)],
+            "ELASTICITY" => vec![n(0.4), n(0.25)],
+            "WEIGHT" => vec![n(1.0), n(2.0), n(1.0)],
+            "REAL" => vec![n(0.05), n(0.02)],
+            other => panic!("no arguments for {other}"),
+        };
+        assert_eq!(sound.len(), function.required(), "{}", function.name);
+        assert!(matches!(cell(function.name, &sound), Cell::Number(_)), "{}", function.name);
+        // A basis may be a text; everything else is a number, for which `two` and `2` as texts are errors.
+        let first = usize::from(function.arguments[0].name == "basis");
+        for i in first..sound.len() {
+            for wrong in ["two", "2"] {
+                let mut arguments = sound.clone();
+                arguments[i] = t(wrong);
+                assert_eq!(cell(function.name, &arguments), VALUE, "{} {i} {wrong}", function.name);
+            }
+        }
+    }
+}
