@@ -1,8 +1,9 @@
-//! Benchmarks: factors per second, and filling workbooks of a million cells. `bash tests/bench/run` writes RESULTS.md.
+//! Benchmarks: factors and calls per second, and filling workbooks of a million cells. `bash tests/bench/run` writes RESULTS.md.
 
 /// The large workbooks, shared with the tests of the workbook crate.
 #[path = "../../workbook/large.rs"]
 mod books;
+mod calls;
 
 use std::path::Path;
 use std::time::{Duration, Instant};
@@ -26,6 +27,7 @@ fn main() {
         }
         _ => {
             factors();
+            calls::calls();
             fills();
         }
     }
