@@ -12,7 +12,7 @@ Option Private Module
 '
 '     Dim basis As LongPtr, failure As hence_error, line() As Byte, offset As Double, factor As Double
 '     failure.struct_size = LenB(failure)
-'     line = HenceBytes("3.5% to 30, 3% after")
+'     HenceBytes "3.5% to 30, 3% after", line
 '     If hence_basis_parse(VarPtr(line(0)), basis, failure) <> HENCE_OK Then
 '         MsgBox HenceText(failure.message)
 '         Exit Sub
@@ -93,7 +93,8 @@ Public Type hence_error
 End Type
 
 ' The version of the binary interface that this library was built with.
-Public Declare PtrSafe Function hence_abi_version Lib "hence64.xll" () As Long
+Public Declare PtrSafe Function hence_abi_version_of_library Lib "hence64.xll" Alias "hence_abi_version" ( _
+    ) As Long
 
 ' Calls a worksheet function, as the add-ins do.
 Public Declare PtrSafe Function hence_worksheet_call Lib "hence64.xll" ( _
@@ -135,6 +136,14 @@ Public Declare PtrSafe Function hence_basis_parse Lib "hence64.xll" ( _
     ByRef out As LongPtr, _
     ByRef failure As hence_error) As Long
 
+' Parses a basis whose curve needs a base year or the appraisal's length.
+Public Declare PtrSafe Function hence_basis_parse_at Lib "hence64.xll" ( _
+    ByVal line As LongPtr, _
+    ByVal base_year As Long, _
+    ByVal length As Double, _
+    ByRef out As LongPtr, _
+    ByRef failure As hence_error) As Long
+
 ' Frees a handle. NULL is allowed. Threads: no other thread may be using the handle.
 Public Declare PtrSafe Sub hence_basis_free Lib "hence64.xll" (ByVal basis As LongPtr)
 
@@ -143,6 +152,48 @@ Public Declare PtrSafe Function hence_basis_describe Lib "hence64.xll" ( _
     ByVal basis As LongPtr, _
     ByVal buffer As LongPtr, _
     ByVal capacity As LongPtr, _
+    ByRef failure As hence_error) As Long
+
+' The canonical text of the basis, which parses back to the same basis: its rate line, or its schedule's id,
+' with the timing that it states.
+Public Declare PtrSafe Function hence_basis_line Lib "hence64.xll" ( _
+    ByVal basis As LongPtr, _
+    ByVal buffer As LongPtr, _
+    ByVal capacity As LongPtr, _
+    ByRef failure As hence_error) As Long
+
+' The timing that the basis states, its own before its schedule's, as hence_offsets_from_years takes it:
+' "flows middle, base end"; "flows end, base end" where it states none.
+Public Declare PtrSafe Function hence_basis_timing Lib "hence64.xll" ( _
+    ByVal basis As LongPtr, _
+    ByVal buffer As LongPtr, _
+    ByVal capacity As LongPtr, _
+    ByRef failure As hence_error) As Long
+
+' The rate line of a built-in schedule, with the timing it states.
+Public Declare PtrSafe Function hence_schedule_line Lib "hence64.xll" ( _
+    ByVal id As LongPtr, _
+    ByVal buffer As LongPtr, _
+    ByVal capacity As LongPtr, _
+    ByRef failure As hence_error) As Long
+
+' Offsets of flows from their years: (year - base) + position of the flows - position of the base, in years,
+' the positions being start 0, middle 1/2 and end 1.
+Public Declare PtrSafe Function hence_offsets_from_years Lib "hence64.xll" ( _
+    ByRef years As Double, _
+    ByVal n As LongPtr, _
+    ByVal origin As Double, _
+    ByVal timing As LongPtr, _
+    ByRef offsets As Double, _
+    ByRef failure As hence_error) As Long
+
+' Offsets of dates from the base date, in years.
+Public Declare PtrSafe Function hence_offsets_from_dates Lib "hence64.xll" ( _
+    ByRef dates As Long, _
+    ByVal n As LongPtr, _
+    ByVal origin As Long, _
+    ByVal day_count As LongPtr, _
+    ByRef offsets As Double, _
     ByRef failure As hence_error) As Long
 
 ' Discount factors D(t), one an offset.
@@ -169,6 +220,47 @@ Public Declare PtrSafe Function hence_mean_rates Lib "hence64.xll" ( _
     ByRef rates As Double, _
     ByRef failure As hence_error) As Long
 
+' The Ramsey rate rho + eta g, a fraction per year.
+Public Declare PtrSafe Function hence_ramsey_rate Lib "hence64.xll" ( _
+    ByVal rho As Double, _
+    ByVal eta As Double, _
+    ByVal g As Double, _
+    ByRef rate As Double, _
+    ByRef failure As hence_error) As Long
+
+' The Ramsey rate where growth is uncertain and independent from year to year: rho + eta g - eta (eta + 1)
+' sd^2 / 2, a fraction per year.
+Public Declare PtrSafe Function hence_ramsey_rate_uncertain Lib "hence64.xll" ( _
+    ByVal rho As Double, _
+    ByVal eta As Double, _
+    ByVal g As Double, _
+    ByVal sd As Double, _
+    ByRef rate As Double, _
+    ByRef failure As hence_error) As Long
+
+' The elasticity of marginal utility that tax rates imply by equal absolute sacrifice: ln(1 - marginal) /
+' ln(1 - average), a pure number.
+Public Declare PtrSafe Function hence_elasticity_from_taxes Lib "hence64.xll" ( _
+    ByVal marginal As Double, _
+    ByVal average As Double, _
+    ByRef elasticity As Double, _
+    ByRef failure As hence_error) As Long
+
+' The equity weight of a group: (reference / income)^elasticity, a pure number.
+Public Declare PtrSafe Function hence_equity_weight Lib "hence64.xll" ( _
+    ByVal income As Double, _
+    ByVal reference As Double, _
+    ByVal elasticity As Double, _
+    ByRef weight As Double, _
+    ByRef failure As hence_error) As Long
+
+' The real rate behind a nominal rate: (1 + nominal) / (1 + inflation) - 1, a fraction per year.
+Public Declare PtrSafe Function hence_real_rate Lib "hence64.xll" ( _
+    ByVal nominal As Double, _
+    ByVal inflation As Double, _
+    ByRef rate As Double, _
+    ByRef failure As hence_error) As Long
+
 ' Present value of one stream: the sum of D(offset) x flow, correctly rounded from the factors.
 Public Declare PtrSafe Function hence_present_value Lib "hence64.xll" ( _
     ByVal basis As LongPtr, _
@@ -178,20 +270,43 @@ Public Declare PtrSafe Function hence_present_value Lib "hence64.xll" ( _
     ByRef value As Double, _
     ByRef failure As hence_error) As Long
 
-' The Ramsey rate rho + eta g, a fraction per year.
-Public Declare PtrSafe Function hence_ramsey_rate Lib "hence64.xll" ( _
-    ByVal rho As Double, _
-    ByVal eta As Double, _
-    ByVal g As Double, _
-    ByRef rate As Double, _
+' Present values of several streams at the same offsets, one a stream, each as hence_present_value gives it.
+Public Declare PtrSafe Function hence_present_values Lib "hence64.xll" ( _
+    ByVal basis As LongPtr, _
+    ByRef offsets As Double, _
+    ByRef flows As Double, _
+    ByVal rows As LongPtr, _
+    ByVal n As LongPtr, _
+    ByRef values As Double, _
+    ByRef failure As hence_error) As Long
+
+' The constant amount a year, over service years 1 to N, that has the present value given: value / (D(1) +
+' ... + D(N)).
+Public Declare PtrSafe Function hence_annual_equivalent Lib "hence64.xll" ( _
+    ByVal basis As LongPtr, _
+    ByVal value As Double, _
+    ByVal service_years As Long, _
+    ByRef annual As Double, _
+    ByRef failure As hence_error) As Long
+
+' Every internal rate of return in an interval, rising: the rates r with sum of flow x (1+r)^-offset = 0.
+Public Declare PtrSafe Function hence_irr_all Lib "hence64.xll" ( _
+    ByRef offsets As Double, _
+    ByRef flows As Double, _
+    ByVal n As LongPtr, _
+    ByVal lowest As Double, _
+    ByVal highest As Double, _
+    ByRef rates As Double, _
+    ByVal capacity As LongPtr, _
+    ByRef count As LongPtr, _
     ByRef failure As hence_error) As Long
 
 ' The name of a status, as static text: "HENCE_ERR_DOMAIN". Unknown numbers give "unknown status".
 Public Declare PtrSafe Function hence_status_name Lib "hence64.xll" (ByVal code As Long) As LongPtr
 
-' A text as UTF-8 with a zero byte behind it. Half a pair of characters becomes the replacement character.
-Public Function HenceBytes(ByVal text As String) As Byte()
-    Dim bytes() As Byte, used As Long, i As Long, code As Long, low As Long
+' Puts a text into bytes, as UTF-8 with a zero byte behind it. An unpaired surrogate becomes the replacement character.
+Public Sub HenceBytes(ByVal text As String, bytes() As Byte)
+    Dim used As Long, i As Long, code As Long, low As Long
     ReDim bytes(0 To 3 * Len(text))
     i = 1
     Do While i <= Len(text)
@@ -229,8 +344,7 @@ Public Function HenceBytes(ByVal text As String) As Byte()
     Loop
     bytes(used) = 0
     ReDim Preserve bytes(0 To used)
-    HenceBytes = bytes
-End Function
+End Sub
 
 ' The text in UTF-8 that the library wrote, up to its zero byte.
 Public Function HenceText(bytes() As Byte) As String

@@ -1,7 +1,7 @@
 
-' A text as UTF-8 with a zero byte behind it. Half a pair of characters becomes the replacement character.
-Public Function HenceBytes(ByVal text As String) As Byte()
-    Dim bytes() As Byte, used As Long, i As Long, code As Long, low As Long
+' Puts a text into bytes, as UTF-8 with a zero byte behind it. An unpaired surrogate becomes the replacement character.
+Public Sub HenceBytes(ByVal text As String, bytes() As Byte)
+    Dim used As Long, i As Long, code As Long, low As Long
     ReDim bytes(0 To 3 * Len(text))
     i = 1
     Do While i <= Len(text)
@@ -39,8 +39,7 @@ Public Function HenceBytes(ByVal text As String) As Byte()
     Loop
     bytes(used) = 0
     ReDim Preserve bytes(0 To used)
-    HenceBytes = bytes
-End Function
+End Sub
 
 ' The text in UTF-8 that the library wrote, up to its zero byte.
 Public Function HenceText(bytes() As Byte) As String

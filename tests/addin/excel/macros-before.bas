@@ -12,7 +12,7 @@ Option Private Module
 '
 '     Dim basis As LongPtr, failure As hence_error, line() As Byte, offset As Double, factor As Double
 '     failure.struct_size = LenB(failure)
-'     line = HenceBytes("3.5% to 30, 3% after")
+'     HenceBytes "3.5% to 30, 3% after", line
 '     If hence_basis_parse(VarPtr(line(0)), basis, failure) <> HENCE_OK Then
 '         MsgBox HenceText(failure.message)
 '         Exit Sub

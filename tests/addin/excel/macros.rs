@@ -7,10 +7,10 @@ use super::header::{Item, Named, items};
 use crate::root;
 
 /// Names that the language keeps for itself, and what stands instead.
-const INSTEAD: &[(&str, &str)] = &[("error", "failure"), ("function", "function_name")];
+const INSTEAD: &[(&str, &str)] = &[("base", "origin"), ("error", "failure"), ("function", "function_name")];
 
 /// Words of the language that cannot be names; INSTEAD must have another for each that the header uses.
-const RESERVED: &str = "abs addressof and any array as attribute boolean byref byte byval call case cbool cbyte ccur \
+const RESERVED: &str = "abs addressof and any array as attribute base boolean byref byte byval call case cbool cbyte ccur \
     cdate cdbl cdec cint circle clng clnglng clngptr close const csng cstr currency cvar cverr date debug decimal declare \
     defbool defbyte defcur defdate defdbl defint deflng deflnglng deflngptr defobj defsng defstr defvar dim do double \
     doevents each else elseif empty end endif enum eqv erase error event exit false fix for friend function get global \
@@ -74,7 +74,14 @@ fn function(name: &str, result: &str, parameters: &[Named], items: &[Item]) -> S
             ("Function", format!(" As {kind}"))
         }
     };
-    let head = format!("Public Declare PtrSafe {word} {name} Lib \"hence64.xll\" (");
+    // Macros know no capitals: a function may not be called as a constant.
+    let taken =
+        |item: &Item| matches!(item, Item::Constant { name: other, .. } if other.eq_ignore_ascii_case(name));
+    let called = match items.iter().any(taken) {
+        true => format!("{name}_of_library Lib \"hence64.xll\" Alias \"{name}\""),
+        false => format!("{name} Lib \"hence64.xll\""),
+    };
+    let head = format!("Public Declare PtrSafe {word} {called} (");
     let joined = parameters.join(", ");
     if head.len() + joined.len() + end.len() < 110 {
         return format!("{head}{joined}){end}\n");
@@ -171,7 +178,8 @@ fn the_declarations_are_complete_and_laid_out_alike() {
     let module = module();
     let header = std::fs::read_to_string(root().join("include/hence.h")).expect("include/hence.h");
     for name in super::declared(&header) {
-        let declared = [format!("Function {name} Lib"), format!("Sub {name} Lib")];
+        let declared =
+            [format!("Function {name} Lib"), format!("Sub {name} Lib"), format!("Alias \"{name}\"")];
         assert_eq!(
             declared.iter().map(|text| module.matches(text.as_str()).count()).sum::<usize>(),
             1,
@@ -187,6 +195,24 @@ fn the_declarations_are_complete_and_laid_out_alike() {
     assert_eq!(size("hence_range"), size_of::<hence::hence_range>());
     assert!(module.contains("argument As Long\r\n    padding_1 As Long\r\n    index As LongLong\r\n"));
     assert_eq!(std::mem::offset_of!(hence::hence_error, index), 16);
+}
+
+/// No name is declared twice, capitals apart.
+#[test]
+fn no_name_is_taken_twice() {
+    let module = module().to_lowercase();
+    let words = ["public const ", "public type ", "function ", "sub "];
+    let mut names: Vec<&str> = module
+        .lines()
+        .filter(|line| line.starts_with("public "))
+        .filter_map(|line| words.iter().find_map(|word| line.split_once(word)))
+        .map(|(_, rest)| rest.split([' ', '(', '\r']).next().expect("a name"))
+        .collect();
+    assert!(names.contains(&"hence_ok") && names.contains(&"hence_factors") && names.contains(&"hencetext"));
+    let count = names.len();
+    names.sort_unstable();
+    names.dedup();
+    assert_eq!(names.len(), count);
 }
 
 /// The bytes of a member as declared: `message(0 To 255) As Byte`.
