@@ -8,7 +8,7 @@ mod cases;
 mod header;
 mod macros;
 mod mutants;
-mod wine;
+pub mod wine;
 
 use std::collections::BTreeSet;
 use std::process::{Command, Output};

@@ -1,6 +1,7 @@
 //! The add-ins: the function table, a real LibreOffice, and a stand-in host for Excel under Wine.
 
 mod excel;
+mod exe;
 mod functions;
 mod table;
 
