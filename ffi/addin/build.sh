@@ -5,8 +5,7 @@ set -euo pipefail
 cd "$(dirname "$0")/../.."
 
 case "${1:-}" in
-  calc | excel) exec bash "ffi/addin/$1/build.sh" ;;
-  exe) exec bash ffi/addin/excel/exe.sh ;;
+  calc | excel | exe) exec bash "ffi/addin/$1/build.sh" "${@:2}" ;;
   *)
     echo "build: found \"${1:-}\", allowed: calc, excel, exe" >&2
     exit 2

@@ -4,7 +4,7 @@ set -euo pipefail
 cd "$(dirname "$0")/../../.."
 
 target=${CARGO_TARGET_DIR:-target}
-bash ffi/addin/excel/cross.sh build --release --locked --package hence-excel
+bash ffi/addin/cross.sh build --release --locked --package hence-excel
 mkdir -p "$target/addin"
 cp "$target/cross/x86_64-pc-windows-gnu/release/hence_excel.dll" "$target/addin/hence64.xll"
 cp ffi/addin/excel/hence.bas "$target/addin/hence.bas"

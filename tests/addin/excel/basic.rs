@@ -5,8 +5,8 @@ use std::path::PathBuf;
 use std::process::Command;
 
 use super::macros::module;
-use super::wine::{not_run, said};
 use crate::root;
+use crate::wine::{not_run, said};
 
 /// A Python with LibreOffice's own package.
 fn python() -> Option<PathBuf> {

@@ -5,9 +5,9 @@
 
 use std::path::{Path, PathBuf};
 
-use super::wine::{self, Windows, said};
 use super::{cases, host};
 use crate::root;
+use crate::wine::{self, Windows, said};
 
 /// A passage of a file, which must be there once, and what stands there instead.
 struct Change {
@@ -165,8 +165,7 @@ fn build(windows: &Windows, name: &str, changes: &[&Change]) -> bool {
         write(folder.join("Cargo.lock"), &lock);
     }
     let manifest = folder.join("Cargo.toml").display().to_string();
-    let built =
-        wine::script("excel/cross.sh", &["build", "--release", "--offline", "--manifest-path", &manifest]);
+    let built = wine::script("cross.sh", &["build", "--release", "--offline", "--manifest-path", &manifest]);
     let made = wine::target().join("cross/x86_64-pc-windows-gnu/release/hence_mutant.dll");
     built.is_some() && std::fs::copy(made, windows.folder().join(name)).is_ok()
 }

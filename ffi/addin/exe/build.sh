@@ -11,8 +11,8 @@ for folder in /usr/lib/llvm*/lib/clang/*/include /usr/x86_64-w64-mingw32/include
   [ -d "$folder" ] && includes="$includes -isystem $folder"
 done
 export BINDGEN_EXTRA_CLANG_ARGS=${BINDGEN_EXTRA_CLANG_ARGS:-$includes}
-bash ffi/addin/excel/cross.sh build --release --locked --package hence-cli
+bash ffi/addin/cross.sh build --release --locked --package hence-cli
 mkdir -p "$target/addin"
 cp "$target/cross/x86_64-pc-windows-gnu/release/hence.exe" "$target/addin/hence.exe"
-sed 's/$/\r/' ffi/addin/excel/drop-workbooks-here.cmd >"$target/addin/drop-workbooks-here.cmd"
+sed 's/$/\r/' ffi/addin/exe/drop-workbooks-here.cmd >"$target/addin/drop-workbooks-here.cmd"
 echo "$target/addin/hence.exe"

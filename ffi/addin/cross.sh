@@ -1,5 +1,5 @@
 #!/usr/bin/env bash
-# Runs cargo for 64-bit Windows, into target/cross: `bash ffi/addin/excel/cross.sh build --release --package hence-excel`.
+# Runs cargo for 64-bit Windows, into target/cross: `bash ffi/addin/cross.sh build --release --package hence-excel`.
 set -euo pipefail
 
 triple=x86_64-pc-windows-gnu

@@ -4,7 +4,13 @@ use std::path::{Path, PathBuf};
 use std::process::{Command, Output};
 use std::sync::OnceLock;
 
-use crate::root;
+/// The top of the source tree.
+fn top() -> &'static Path {
+    let here = Path::new(env!("CARGO_MANIFEST_DIR"));
+    here.ancestors()
+        .find(|folder| folder.join("include/hence.h").is_file())
+        .expect("a folder within the tree")
+}
 
 /// Where cargo puts what it builds: the folder above the one that it sets aside for tests.
 pub fn target() -> PathBuf {
@@ -67,12 +73,12 @@ impl Windows {
 
     /// Compiles C sources of this test into a program or library of the folder.
     pub fn compile(&self, sources: &[&str], output: &str, options: &[&str]) {
-        let here = root().join("tests/addin/excel");
+        let here = top().join("tests/addin/excel");
         let output = Command::new("x86_64-w64-mingw32-gcc")
             .args(["-std=c11", "-O1", "-Wall", "-Wextra", "-Werror", "-o"])
             .arg(self.folder.join(output))
             .arg("-I")
-            .arg(root().join("include"))
+            .arg(top().join("include"))
             .args(sources.iter().map(|source| here.join(source)))
             .args(options)
             .output()
@@ -99,12 +105,12 @@ impl Windows {
     }
 }
 
-/// Runs a script of the add-in's folder; none where it says that a tool is missing.
+/// Runs a script of the add-ins' folder; none where it says that a tool is missing.
 pub fn script(name: &str, arguments: &[&str]) -> Option<Output> {
     let output = Command::new("bash")
-        .arg(root().join("ffi/addin").join(name))
+        .arg(top().join("ffi/addin").join(name))
         .args(arguments)
-        .current_dir(root())
+        .current_dir(top())
         .env("CARGO_TARGET_DIR", target())
         .output()
         .expect("bash runs");
@@ -114,14 +120,4 @@ pub fn script(name: &str, arguments: &[&str]) -> Option<Output> {
     }
     assert!(output.status.success(), "{name}: {}", said(&output));
     Some(output)
-}
-
-/// The add-in, built with the project's own script; none where a tool for that is missing.
-pub fn xll() -> Option<&'static Path> {
-    static ONCE: OnceLock<Option<PathBuf>> = OnceLock::new();
-    let built = ONCE.get_or_init(|| {
-        script("build.sh", &["excel"])?;
-        Some(target().join("addin/hence64.xll"))
-    });
-    built.as_deref()
 }
