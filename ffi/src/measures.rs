@@ -44,9 +44,9 @@ pub unsafe extern "C" fn hence_present_value(
 /// In cells: HENCE.VALUE.
 ///
 /// Arguments: `basis` (in, not NULL); `offsets` (in, `n` doubles, years from the base); `flows` (in, `rows` x `n`
-/// doubles, row by row: the stream i begins at flows[i * n]); `rows` (in; 0 writes nothing); `n` (in; 0 gives 0 for each
+/// doubles, row by row: the stream i begins at number i x n); `rows` (in; 0 writes nothing); `n` (in; 0 gives 0 for each
 /// stream); `values` (out, `rows` doubles, may not overlap the inputs); `error` (out, may be NULL).
-/// Returns as hence_factors, an index of `flows` counting from flows[0]. Threads: any.
+/// Returns as hence_factors, an index of `flows` counting from its first. Threads: any.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_present_values(
     basis: *const hence_basis,
