@@ -59,7 +59,7 @@ fn host(windows: &Windows, xll: &str, cases: &str, threads: u32, calls: u32) -> 
     std::fs::write(folder.join(&registered), registrations()).expect("a temporary file");
     std::fs::write(folder.join(&called), cases).expect("a temporary file");
     let host = format!("{xll}.host.exe");
-    windows.compile(&["host.c", "values.c"], &host, &["-Wno-cast-function-type"]);
+    windows.compile(&["host.c", "entry.c", "values.c"], &host, &["-Wno-cast-function-type"]);
     windows.run(host, &[xll, &registered, &called, &threads.to_string(), &calls.to_string()])
 }
 

@@ -7,6 +7,7 @@
  * holds lines such as `HENCE.REAL n:3fb0000000000000 m = e:15`; one that begins with `once` is left out where calls are
  * repeated. Ends with 0 where all is well, 1 where the .xll is at fault, 2 where the stand-in was not used properly. */
 
+#include "entry.h"
 #include "hence.h"
 #include "values.h"
 
@@ -15,19 +16,7 @@
 #include <string.h>
 #include <windows.h>
 
-enum {
-    XL_FREE = 0x4000,
-    XL_GET_NAME = 0x4009,
-    XLF_SET_NAME = 88,
-    XLF_REGISTER = 149,
-    XLF_UNREGISTER = 201,
-    RETURN_SUCCESS = 0,
-    RETURN_FAILED = 32,
-    NAMED_MAX = 64,
-    FIELDS_MAX = 32,
-    CASES_MAX = 1000,
-    ARGUMENTS_MAX = 8,
-};
+enum { CASES_MAX = 1000, ARGUMENTS_MAX = 8 };
 
 typedef struct value *(WINAPI *procedure0)(void);
 typedef struct value *(WINAPI *procedure1)(struct value *);
@@ -36,146 +25,6 @@ typedef struct value *(WINAPI *procedure3)(struct value *, struct value *, struc
 typedef struct value *(WINAPI *procedure4)(struct value *, struct value *, struct value *, struct value *);
 typedef struct value *(WINAPI *procedure5)(struct value *, struct value *, struct value *, struct value *,
                                            struct value *);
-
-/* ---- what went wrong ---- */
-
-static volatile LONG faults;
-
-#define FAULT(...)                                                                                                     \
-    do {                                                                                                               \
-        if (InterlockedIncrement(&faults) <= 20) {                                                                     \
-            printf("fault: " __VA_ARGS__);                                                                             \
-            printf("\n");                                                                                              \
-        }                                                                                                              \
-    } while (0)
-
-/* ---- the host's own entry ---- */
-
-struct function {
-    char name[80];      /* as formulas write it */
-    struct value fields[FIELDS_MAX];
-    int count;          /* how many fields, the module's name first */
-    int arguments;      /* of the procedure, by the type text */
-    void *procedure;
-    int named, alive;   /* the name and the registration stand */
-};
-
-static struct function functions[NAMED_MAX];
-static int function_count;
-static HMODULE xll;
-static unit module_name[300];
-static int texts_out; /* texts of the host's that the add-in has not given back */
-static DWORD main_thread;
-static volatile LONG calling; /* calls of worksheet functions under way */
-static struct arena kept;
-
-static int ascii(const struct value *text, char *out, size_t size)
-{
-    if (text->xltype != TYPE_STR || text->val.str[0] >= size)
-        return 0;
-    for (int i = 0; i < text->val.str[0]; ++i)
-        out[i] = (char)text->val.str[i + 1];
-    out[text->val.str[0]] = 0;
-    return 1;
-}
-
-static struct function *find(const char *name)
-{
-    for (int i = 0; i < function_count; ++i)
-        if (strcmp(functions[i].name, name) == 0)
-            return &functions[i];
-    return NULL;
-}
-
-static int register_function(int count, struct value **arguments, struct value *result)
-{
-    char symbol[80], types[80];
-    struct function *f = &functions[function_count];
-    if (function_count == NAMED_MAX || count < 4 || count > FIELDS_MAX) {
-        FAULT("a registration with %d values", count);
-        return RETURN_FAILED;
-    }
-    memset(f, 0, sizeof *f);
-    for (int i = 0; i < count; ++i) {
-        f->fields[i] = *arguments[i];
-        if (arguments[i]->xltype == TYPE_STR) {
-            size_t bytes = (1 + (size_t)arguments[i]->val.str[0]) * sizeof(unit);
-            f->fields[i].val.str = take(&kept, bytes);
-            memcpy(f->fields[i].val.str, arguments[i]->val.str, bytes);
-            if (arguments[i]->val.str[0] > 255)
-                FAULT("value %d of a registration has %d units", i, arguments[i]->val.str[0]);
-        }
-    }
-    f->count = count;
-    if (!ascii(&f->fields[1], symbol, sizeof symbol) || !ascii(&f->fields[2], types, sizeof types) ||
-        !ascii(&f->fields[3], f->name, sizeof f->name)) {
-        FAULT("a registration without a procedure, its types and a name");
-        return RETURN_FAILED;
-    }
-    /* A value for the result, one for each argument, and the promise that any thread may call. */
-    size_t values = strspn(types, "Q");
-    if (values < 1 || values > 1 + 5 || strcmp(types + values, "$") != 0)
-        FAULT("%s: types %s", f->name, types);
-    f->arguments = (int)values - 1;
-    f->procedure = (void *)GetProcAddress(xll, symbol);
-    if (f->procedure == NULL)
-        FAULT("%s: %s is not exported", f->name, symbol);
-    if (find(f->name) != NULL)
-        FAULT("%s is registered twice", f->name);
-    f->named = f->alive = 1;
-    ++function_count;
-    result->xltype = TYPE_NUM;
-    result->val.num = 1000.0 + function_count;
-    return RETURN_SUCCESS;
-}
-
-__declspec(dllexport) int WINAPI MdCallBack12(int number, int count, struct value **arguments, struct value *result)
-{
-    char name[80];
-    if (GetCurrentThreadId() != main_thread || calling != 0) {
-        FAULT("the host's function %d was called from within a worksheet function", number);
-        return RETURN_FAILED;
-    }
-    switch (number) {
-    case XL_GET_NAME:
-        result->xltype = TYPE_STR;
-        result->val.str = malloc(sizeof module_name);
-        memcpy(result->val.str, module_name, sizeof module_name);
-        ++texts_out;
-        return RETURN_SUCCESS;
-    case XL_FREE:
-        for (int i = 0; i < count; ++i)
-            if (arguments[i]->xltype == TYPE_STR) {
-                free(arguments[i]->val.str);
-                --texts_out;
-            }
-        return RETURN_SUCCESS;
-    case XLF_REGISTER:
-        return register_function(count, arguments, result);
-    case XLF_SET_NAME:
-        if (count != 1 || !ascii(arguments[0], name, sizeof name) || find(name) == NULL || !find(name)->named) {
-            FAULT("a name to delete that is not set");
-            return RETURN_FAILED;
-        }
-        find(name)->named = 0;
-        break;
-    case XLF_UNREGISTER: {
-        int i = count == 1 && arguments[0]->xltype == TYPE_NUM ? (int)arguments[0]->val.num - 1001 : -1;
-        if (i < 0 || i >= function_count || !functions[i].alive) {
-            FAULT("a registration to take back that does not stand");
-            return RETURN_FAILED;
-        }
-        functions[i].alive = 0;
-        break;
-    }
-    default:
-        FAULT("the host's function %d was called", number);
-        return RETURN_FAILED;
-    }
-    result->xltype = TYPE_BOOL;
-    result->val.xbool = 1;
-    return RETURN_SUCCESS;
-}
 
 /* ---- cases ---- */
 
