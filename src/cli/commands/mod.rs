@@ -4,6 +4,7 @@ pub mod check;
 pub mod curve;
 pub mod fill;
 pub mod names;
+pub mod rate;
 pub mod schedules;
 pub mod start;
 
