@@ -12,6 +12,7 @@ mod readme;
 mod schedules;
 mod start;
 mod targets;
+mod windows;
 
 use std::io::Write;
 use std::path::{Path, PathBuf};

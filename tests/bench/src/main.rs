@@ -1,8 +1,9 @@
-//! Benchmarks: factors and calls per second, and filling workbooks of a million cells. `bash tests/bench/run` writes RESULTS.md.
+//! Benchmarks: factors and calls per second, cells of LibreOffice, and filling workbooks of a million cells. `bash tests/bench/run` writes RESULTS.md.
 
 /// The large workbooks, shared with the tests of the workbook crate.
 #[path = "../../workbook/large.rs"]
 mod books;
+mod calc;
 mod calls;
 
 use std::path::Path;
@@ -18,6 +19,7 @@ fn main() {
     match args.get(1).map(String::as_str) {
         // A fill in a process of its own, so that its peak memory is its own.
         Some("fill") => fill(Path::new(&args[2])),
+        Some("calc") => calc::calc(),
         Some("make") => {
             books::make(
                 Path::new(&args[2]),
@@ -28,6 +30,7 @@ fn main() {
         _ => {
             factors();
             calls::calls();
+            calc::calc();
             fills();
         }
     }
