@@ -42,9 +42,9 @@ Public Const HENCE_OK As Long = 0
 Public Const HENCE_ERR_NULL As Long = 10
 ' A pointer is not aligned for its type.
 Public Const HENCE_ERR_ALIGNMENT As Long = 11
-' A length is above HENCE_LENGTH_MAX.
+' A length is above HENCE_LENGTH_MAX, or there is no memory for as many results.
 Public Const HENCE_ERR_LENGTH As Long = 12
-' Output and input overlap.
+' An output overlaps an input or another output.
 Public Const HENCE_ERR_OVERLAP As Long = 13
 ' The caller's buffer is too small.
 Public Const HENCE_ERR_CAPACITY As Long = 14
@@ -82,7 +82,8 @@ Public Type hence_range
     texts As LongPtr
 End Type
 
-' What went wrong, written into the caller's own struct. Nothing in it is allocated or freed.
+' What went wrong, written into the caller's own struct, which may overlap no other argument. Nothing in it
+' is allocated or freed.
 Public Type hence_error
     struct_size As Long
     code As Long
