@@ -105,6 +105,13 @@ impl Error {
         self
     }
 
+    /// The same error about another argument, as the caller names it.
+    #[must_use]
+    pub(crate) fn about(mut self, argument: &'static str) -> Self {
+        self.0.argument = argument;
+        self
+    }
+
     /// What kind of error this is.
     pub fn kind(&self) -> ErrorKind {
         self.0.kind
