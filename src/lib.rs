@@ -13,6 +13,7 @@ mod check;
 mod curve;
 mod dd;
 mod derivation;
+mod draws;
 mod error;
 mod evidence;
 mod growth;
@@ -33,6 +34,10 @@ pub use catalogue::Catalogue;
 pub use curve::{Curve, Domain, Parts};
 pub use derivation::{
     Derivation, ElasticitySource, Figure, FigureKind, GrowthBy, GrowthSource, Hazard, RateParts, Stated,
+};
+pub use draws::{
+    Chance, Distribution, DrawSummary, Drawn, DrawnRate, Draws, FirstPlace, Histogram, OptionFlows,
+    Perpetual, Quantity, RateDistribution, Spread, draw_values, first_places, histogram, spread,
 };
 pub use error::{Error, ErrorKind, Result};
 pub use evidence::{
