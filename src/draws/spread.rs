@@ -12,11 +12,25 @@ pub struct Chance {
     /// count / draws.
     pub share: f64,
     /// sqrt(share (1 - share) / draws): how far the share is, typically, from the probability. At a share of 0 or 1 it is
-    /// 0, which says little; the probability is then within 3 / draws of it with a confidence of 95%.
+    /// 0, which says little: see [`Chance::bound`].
     pub error: f64,
 }
 
 impl Chance {
+    /// At a share of 0 or 1, how far from it the probability is at most, with a confidence of 95%: 3 / draws.
+    ///
+    /// **Source**: J. A. Hanley and A. Lippman-Hand, "If nothing goes wrong, is everything all right?", Journal of the
+    /// American Medical Association 249, 1983.
+    ///
+    /// ```
+    /// let found = hence_core::spread(&[1.0; 600], &[])?;
+    /// assert_eq!((found.positive.share, found.positive.bound()), (1.0, Some(0.005)));
+    /// # Ok::<(), hence_core::Error>(())
+    /// ```
+    pub fn bound(&self) -> Option<f64> {
+        (self.count == 0 || self.count == self.draws).then(|| (3.0 / self.draws as f64).min(1.0))
+    }
+
     fn of(count: usize, draws: usize) -> Self {
         let share = count as f64 / draws as f64;
         Chance { count, draws, share, error: (share * (1.0 - share) / draws as f64).sqrt() }

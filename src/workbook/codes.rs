@@ -167,6 +167,7 @@ pub const CODES: &[Code] = codes! {
         "whole-range": "A name covers a whole row or column, headings too.",
     }
     Settings {
+        "base-differs": "Options have different base years, so that their values do not compare.",
         "base-kind": "A year and the base are of different kinds, so there is no offset between them.",
         "base-value": "The base is not a year, a financial year or a date.",
         "base-years": "The base does not go with the years as they are written.",
@@ -180,7 +181,9 @@ pub const CODES: &[Code] = codes! {
         "blank-setting": "The cell of a setting is blank.",
         "curve-note": "A remark on the curve, such as a jump of the factor at an edge.",
         "no-basis-cell": "No cell states the basis, so a new one stands on the audit sheets alone.",
+        "nothing-uncertain": "Every part of the rate to be drawn is one value, so that all draws are the same.",
         "one-cell": "A setting covers several cells, where one is allowed.",
+        "part-missing": "A part of the rate to be drawn is given neither with the run nor by the workbook's basis.",
         "signs": "The text does not say which flows are negative.",
         "text-expected": "A setting holds a number or another value, where a text is allowed.",
         "timing-differs": "The timing cell and the basis give different timings; the cell counts.",

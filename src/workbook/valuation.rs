@@ -73,7 +73,7 @@ fn overflow(choice: &Choice, outcome: &ChoiceOutcome) -> Option<Problem> {
 }
 
 /// The place of what was given: its cell, else where it came from.
-fn place_of(at: &Option<SheetRange>, from: &str) -> Place {
+pub(crate) fn place_of(at: &Option<SheetRange>, from: &str) -> Place {
     match at {
         Some(at) => Place::cells(&at.sheet, at.range).called(from),
         None => Place::name(from),
@@ -233,7 +233,7 @@ fn yearly_rate(curve: &Curve, t: f64) -> Option<f64> {
 }
 
 /// The base year from which the end of a tail counts: where years are dates, such that the end is a year of theirs.
-fn tail_base(labels: &[Label], clock: &Clock, choice: &Choice) -> Option<i32> {
+pub(crate) fn tail_base(labels: &[Label], clock: &Clock, choice: &Choice) -> Option<i32> {
     match (labels.last(), clock.years.last()) {
         (Some(Label::Date(date)), Some(years)) => Some(chrono::Datelike::year(date) - years.ceil() as i32),
         _ => base_year(&choice.base.value),
@@ -246,6 +246,13 @@ fn push_once(problems: &mut Vec<Problem>, problem: Problem) {
     }
 }
 
+/// The flows after sign, unit and uplift, in the stream's own direction; the residual value is not among them.
+pub(crate) fn scaled(stream: &Stream) -> Vec<f64> {
+    let scale = stream.sign * stream.unit * (1.0 + stream.uplift.value);
+    // Adding zero turns -0 into 0, which no cell should show.
+    stream.raw.iter().map(|x| x * scale + 0.0).collect()
+}
+
 fn value_stream(
     stream: &Stream,
     clock: &Clock,
@@ -253,9 +260,7 @@ fn value_stream(
     factors: &[f64],
     base_year: Option<i32>,
 ) -> Result<(StreamOutcome, Further)> {
-    let scale = stream.sign * stream.unit * (1.0 + stream.uplift.value);
-    // Adding zero turns -0 into 0, which no cell should show.
-    let mut flows: Vec<f64> = stream.raw.iter().map(|x| x * scale + 0.0).collect();
+    let mut flows = scaled(stream);
     let last = flows.len() - 1;
     let last_flow = flows[last];
     if let Some(residual) = &stream.residual {
