@@ -157,6 +157,7 @@ impl Flows {
                 // All flows of a moment are one term; their sum is exact, so that the order of streams does not matter.
                 last.terms[place] = match moment {
                     [one] => one.2,
+                    [one, other] => one.2 + other.2,
                     several => sum(&several.iter().map(|moment| moment.2).collect::<Vec<_>>()),
                 };
             }

@@ -21,6 +21,9 @@ pub use spread::{Chance, FirstPlace, Histogram, Spread, first_places, histogram,
 /// The most draws that are made: their values are all kept.
 const MOST_DRAWS: usize = 10_000_000;
 
+/// More threads than this would wait for one another.
+const MOST_THREADS: usize = 256;
+
 /// How draws are made.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub struct Draws {
@@ -28,7 +31,7 @@ pub struct Draws {
     pub count: usize,
     /// Another seed gives other random numbers.
     pub seed: u64,
-    /// So many threads share the work; they do not change the results.
+    /// So many threads share the work, at most 256; they do not change the results.
     pub threads: NonZeroUsize,
 }
 
@@ -272,7 +275,7 @@ pub fn draw_values(rate: &RateDistribution, options: &[OptionFlows], draws: &Dra
         values: vec![vec![0.0; draws.count]; options.len()],
     };
     // Each thread takes one stretch of the draws.
-    let stretch = draws.count.div_ceil(draws.threads.get()).next_multiple_of(ABREAST);
+    let stretch = draws.count.div_ceil(draws.threads.get().min(MOST_THREADS)).next_multiple_of(ABREAST);
     let mut stretches: Vec<Stretch> = drawn
         .rates
         .chunks_mut(stretch)

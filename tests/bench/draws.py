@@ -47,7 +47,9 @@ def draw(value):
     level = values == best[:, None]
     alone = level & (level.sum(axis=1) == 1)[:, None]
     mean, sd = values.mean(axis=0), values.std(axis=0, ddof=1)
-    np.percentile(values, [5, 25, 50, 75, 95], axis=0)
+    for drawn in (rate, values):
+        np.percentile(drawn, [5, 25, 50, 75, 95], axis=0)
+    rate.mean(), rate.std(ddof=1)
     positive, first = (values > 0).mean(axis=0), alone.mean(axis=0)
     for share in (positive, first):
         np.sqrt(share * (1 - share) / DRAWS)
@@ -56,13 +58,13 @@ def draw(value):
 
 
 for name, value in [
-    ("numpy, factors by powers", by_powers),
-    ("numpy, factors by exponentials", by_factors),
-    ("numpy, Horner's rule a year at a time", by_horner),
+    ("factors by powers", by_powers),
+    ("factors by exponentials", by_factors),
+    ("Horner's rule a year at a time", by_horner),
 ]:
     times = []
     for _ in range(RUNS):
         start = time.perf_counter()
         numbers = draw(value)
         times.append(time.perf_counter() - start)
-    print(name, min(times), *map(float, numbers), sep="\t")
+    print(f"numpy {np.__version__}, {name}", min(times), *map(float, numbers), sep="\t")

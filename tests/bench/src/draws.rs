@@ -16,7 +16,7 @@ const DRAWS: usize = 10_000;
 const YEARS: usize = 300;
 const OPTIONS: usize = 3;
 const PERCENTILES: [f64; 5] = [5.0, 25.0, 50.0, 75.0, 95.0];
-const RUNS: usize = 20;
+const RUNS: usize = 100;
 
 /// The parts of the rate; `draws.py` states the same.
 const PARTS: [(Quantity, &str); 4] = [
