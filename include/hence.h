@@ -234,6 +234,15 @@ int32_t hence_basis_line(const hence_basis *basis,
                          size_t capacity,
                          hence_error *error);
 
+// The timing that the basis states, its own before its schedule's, as hence_offsets_from_years takes it: "flows middle,
+// base end"; "flows end, base end" where it states none.
+//
+// Arguments, statuses and threads as hence_basis_describe.
+int32_t hence_basis_timing(const hence_basis *basis,
+                           char *buffer,
+                           size_t capacity,
+                           hence_error *error);
+
 // The rate line of a built-in schedule, with the timing it states.
 //
 // In cells: HENCE.SCHEDULE.
@@ -399,9 +408,9 @@ int32_t hence_present_value(const hence_basis *basis,
 // In cells: HENCE.VALUE.
 //
 // Arguments: `basis` (in, not NULL); `offsets` (in, `n` doubles, years from the base); `flows` (in, `rows` x `n`
-// doubles, row by row: the stream i begins at flows[i * n]); `rows` (in; 0 writes nothing); `n` (in; 0 gives 0 for each
+// doubles, row by row: the stream i begins at number i x n); `rows` (in; 0 writes nothing); `n` (in; 0 gives 0 for each
 // stream); `values` (out, `rows` doubles, may not overlap the inputs); `error` (out, may be NULL).
-// Returns as hence_factors, an index of `flows` counting from flows[0]. Threads: any.
+// Returns as hence_factors, an index of `flows` counting from its first. Threads: any.
 int32_t hence_present_values(const hence_basis *basis,
                              const double *offsets,
                              const double *flows,

@@ -23,7 +23,7 @@ pub enum ErrorKind {
     UnknownSchedule,
     /// A schedule file is not valid.
     BadSchedule,
-    /// Mixture weights do not sum to 1, or one of them is negative.
+    /// Weights of a mixture, or chances, do not sum to 1, or one of them is negative.
     Weights,
     /// Band edges are not increasing, overlap or are missing.
     Edges,

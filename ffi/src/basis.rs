@@ -138,6 +138,27 @@ pub unsafe extern "C" fn hence_basis_line(
     unsafe { guard(error, body) }
 }
 
+/// The timing that the basis states, its own before its schedule's, as hence_offsets_from_years takes it: "flows middle,
+/// base end"; "flows end, base end" where it states none.
+///
+/// Arguments, statuses and threads as hence_basis_describe.
+#[unsafe(no_mangle)]
+pub unsafe extern "C" fn hence_basis_timing(
+    basis: *const hence_basis,
+    buffer: *mut c_char,
+    capacity: usize,
+    error: *mut hence_error,
+) -> i32 {
+    let body = || {
+        // SAFETY: the caller's contract for `basis`.
+        let timing = unsafe { borrow(basis) }?.basis.timing().unwrap_or_default();
+        // SAFETY: the caller's contract for `buffer`.
+        unsafe { arguments::write_text(&timing.to_string(), buffer, capacity, 2) }
+    };
+    // SAFETY: the caller's contract for `error`.
+    unsafe { guard(error, body) }
+}
+
 /// The rate line of a built-in schedule, with the timing it states.
 ///
 /// In cells: HENCE.SCHEDULE.

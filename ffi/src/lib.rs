@@ -24,7 +24,7 @@ pub use answer::{
 pub use arguments::HENCE_LENGTH_MAX;
 pub use basis::{
     hence_basis, hence_basis_describe, hence_basis_free, hence_basis_line, hence_basis_parse,
-    hence_basis_parse_at, hence_schedule_line,
+    hence_basis_parse_at, hence_basis_timing, hence_schedule_line,
 };
 pub use calendar::{hence_offsets_from_dates, hence_offsets_from_years};
 pub use curves::{hence_factors, hence_forward_rates, hence_mean_rates};

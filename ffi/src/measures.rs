@@ -22,10 +22,12 @@ pub unsafe extern "C" fn hence_present_value(
     error: *mut hence_error,
 ) -> i32 {
     let body = || {
-        // SAFETY: the caller's contracts for `basis`, `offsets` and `flows`.
+        // SAFETY: the caller's contract for `basis`.
         let basis = unsafe { borrow(basis) }?;
-        let offsets = unsafe { arguments::numbers(offsets, n, 2) }?;
-        let flows = unsafe { arguments::numbers(flows, n, 3) }?;
+        arguments::length(n, 4)?;
+        // SAFETY: the caller's contracts for `offsets` and `flows`.
+        let (offsets, flows) =
+            unsafe { (arguments::numbers(offsets, n, 2)?, arguments::numbers(flows, n, 3)?) };
         arguments::output(value, 1, 5)?;
         let result = present_value(&basis.curve, offsets, flows)
             .map_err(|e| Failure::core(&e, if e.argument() == "flows" { 3 } else { 2 }))?;
@@ -42,9 +44,9 @@ pub unsafe extern "C" fn hence_present_value(
 /// In cells: HENCE.VALUE.
 ///
 /// Arguments: `basis` (in, not NULL); `offsets` (in, `n` doubles, years from the base); `flows` (in, `rows` x `n`
-/// doubles, row by row: the stream i begins at flows[i * n]); `rows` (in; 0 writes nothing); `n` (in; 0 gives 0 for each
+/// doubles, row by row: the stream i begins at number i x n); `rows` (in; 0 writes nothing); `n` (in; 0 gives 0 for each
 /// stream); `values` (out, `rows` doubles, may not overlap the inputs); `error` (out, may be NULL).
-/// Returns as hence_factors, an index of `flows` counting from flows[0]. Threads: any.
+/// Returns as hence_factors, an index of `flows` counting from its first. Threads: any.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_present_values(
     basis: *const hence_basis,
@@ -59,10 +61,10 @@ pub unsafe extern "C" fn hence_present_values(
         // SAFETY: the caller's contract for `basis`.
         let basis = unsafe { borrow(basis) }?;
         arguments::length(n, 5)?;
-        arguments::length(rows, 4)?;
+        let total = rows.saturating_mul(n);
+        arguments::length(rows.max(total), 4)?;
         // SAFETY: the caller's contract for `offsets`.
         let offsets = unsafe { arguments::numbers(offsets, n, 2) }?;
-        let total = rows.saturating_mul(n);
         // SAFETY: the caller's contract for `flows`.
         let flows = unsafe { arguments::numbers(flows, total, 3) }?;
         arguments::output(values, rows, 6)?;
@@ -144,9 +146,10 @@ pub unsafe extern "C" fn hence_irr_all(
     error: *mut hence_error,
 ) -> i32 {
     let body = || {
+        arguments::length(n, 3)?;
         // SAFETY: the caller's contracts for `offsets` and `flows`.
-        let offsets = unsafe { arguments::numbers(offsets, n, 1) }?;
-        let flows = unsafe { arguments::numbers(flows, n, 2) }?;
+        let (offsets, flows) =
+            unsafe { (arguments::numbers(offsets, n, 1)?, arguments::numbers(flows, n, 2)?) };
         arguments::finite(lowest, 4)?;
         arguments::finite(highest, 5)?;
         arguments::output(rates, capacity, 6)?;

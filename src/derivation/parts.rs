@@ -122,21 +122,27 @@ impl<'a> Work<'a> {
         };
         let origin = format!("{what} of the {} values of {series}", estimate.values);
         let value = self.computed(name, symbol, value, origin);
-        let mut evidence = |name: &str, value, error, how: &str| {
-            self.add(FigureKind::Evidence, name, "", value, how.into());
+        let mut evidence = |name: &str, symbol, value, error, how: &str| {
+            self.add(FigureKind::Evidence, name, symbol, value, how.into());
             if let Some(figure) = self.figures.last_mut() {
                 figure.error = error;
-                figure.share = !name.starts_with("persistence");
             }
         };
         let (trend, mean, sd) = (estimate.trend, estimate.mean, estimate.sd);
-        evidence("log-linear trend", trend.value, Some(trend.error), "least squares of ln c on the year");
-        evidence("mean of yearly log growth", mean.value, Some(mean.error), "ln(last/first)/years");
-        evidence("geometric mean growth", estimate.geometric_mean, None, "(last/first)^(1/years) - 1");
-        evidence("standard deviation of yearly log growth", sd.value, Some(sd.error), "about its mean");
+        evidence(
+            "log-linear trend",
+            "b",
+            trend.value,
+            Some(trend.error),
+            "least squares of ln c on the year",
+        );
+        evidence("mean of yearly log growth", "", mean.value, Some(mean.error), "ln(last/first)/years");
+        evidence("geometric mean growth", "", estimate.geometric_mean, None, "(last/first)^(1/years) - 1");
+        let name = "standard deviation of yearly log growth";
+        evidence(name, "", sd.value, Some(sd.error), "about its mean");
         if let Some(phi) = estimate.persistence {
-            let how = "first-order autocorrelation of yearly log growth";
-            evidence("persistence of yearly log growth", phi.value, Some(phi.error), how);
+            let how = "first-order autocorrelation";
+            evidence("persistence of yearly log growth", "phi", phi.value, Some(phi.error), how);
         }
         Ok(value)
     }

@@ -28,7 +28,7 @@ impl Sum {
         let g = if self.log { "m" } else { "g" };
         add(FigureKind::Step, "preference and hazard", "rho", rho, "delta + L");
         let effect = format!("eta {g}");
-        add(FigureKind::Step, "wealth effect", if self.log { "eta m" } else { "eta g" }, wealth, &effect);
+        add(FigureKind::Step, "wealth effect", "", wealth, &effect);
         let mut text = format!(
             "rho {} + eta {g} {} ({} x {})",
             shown(rho),

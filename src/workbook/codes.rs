@@ -184,6 +184,8 @@ pub const CODES: &[Code] = codes! {
         "nothing-uncertain": "Every part of the rate to be drawn is one value, so that all draws are the same.",
         "one-cell": "A setting covers several cells, where one is allowed.",
         "part-missing": "A part of the rate to be drawn is given neither with the run nor by the workbook's basis.",
+        "series-gap": "A series that growth is estimated from has a blank cell.",
+        "series-shape": "A series that growth is estimated from is not one row or column, or two with the years first.",
         "signs": "The text does not say which flows are negative.",
         "text-expected": "A setting holds a number or another value, where a text is allowed.",
         "timing-differs": "The timing cell and the basis give different timings; the cell counts.",
@@ -283,6 +285,6 @@ pub const CODES: &[Code] = codes! {
         "syntax": "A text, such as a rate line, does not follow its grammar.",
         "unknown-schedule": "No schedule of that id is known.",
         "unsupported": "This version does not offer what was asked for.",
-        "weights": "The weights of a mixture do not sum to 1, or one is negative.",
+        "weights": "Weights, or chances, do not sum to 1 as they should, or one is negative.",
     }
 };

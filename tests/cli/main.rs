@@ -9,10 +9,12 @@ mod fill;
 mod help;
 mod names;
 mod outputs;
+mod rate;
 mod readme;
 mod schedules;
 mod start;
 mod targets;
+mod windows;
 
 use std::io::Write;
 use std::path::{Path, PathBuf};

@@ -1,9 +1,10 @@
-//! Benchmarks: factors and calls per second, draws, and filling workbooks of a million cells. `bash tests/bench/run`
-//! writes RESULTS.md.
+//! Benchmarks: factors and calls per second, draws, cells of LibreOffice, and filling workbooks of a million cells.
+//! `bash tests/bench/run` writes RESULTS.md.
 
 /// The large workbooks, shared with the tests of the workbook crate.
 #[path = "../../workbook/large.rs"]
 mod books;
+mod calc;
 mod calls;
 mod draws;
 
@@ -21,6 +22,7 @@ fn main() {
         Some("draws") => draws::draws(),
         // A fill in a process of its own, so that its peak memory is its own.
         Some("fill") => fill(Path::new(&args[2])),
+        Some("calc") => calc::calc(),
         Some("make") => {
             books::make(
                 Path::new(&args[2]),
@@ -32,6 +34,7 @@ fn main() {
             factors();
             calls::calls();
             draws::draws();
+            calc::calc();
             fills();
         }
     }
