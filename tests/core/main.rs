@@ -15,6 +15,7 @@ mod schedules;
 mod sums;
 mod tails;
 mod timing;
+mod welfare;
 
 /// Property tests draw the same cases every time, and leave no files behind.
 fn repeatable() -> proptest::test_runner::Config {
