@@ -37,6 +37,8 @@ pub struct FilledOption {
     pub pv_costs: f64,
     pub ratio: Option<f64>,
     pub annual: Option<f64>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub prices: Option<String>,
 }
 
 #[derive(Serialize)]
@@ -59,6 +61,7 @@ impl From<&OptionReport> for FilledOption {
             pv_costs: totals.pv_costs,
             ratio: totals.ratio,
             annual: totals.annual,
+            prices: option.prices.clone(),
         }
     }
 }

@@ -147,12 +147,18 @@ pub fn pv_expression(
     let block = refer(home, &layout.factors(choice));
     let cells = refer(home, &flows.at);
     let factors = analyst_factors(appraisal, layout, outcomes, choice);
-    let product = match (factors, axis.direction) {
-        (Some(at), _) => format!("SUMPRODUCT({cells},{})", refer(home, at)),
-        (None, Direction::Down) => format!("SUMPRODUCT({cells},{block})"),
+    let years = refer(home, &axis.at);
+    let multipliers = layout.multipliers(choice, stream).map(|at| refer(home, &at));
+    let product = match (factors.map(|at| refer(home, at)), axis.direction, &multipliers) {
+        (Some(at), _, None) => format!("SUMPRODUCT({cells},{at})"),
+        (Some(at), Direction::Down, Some(by)) => format!("SUMPRODUCT({cells},{at},{by})"),
+        (None, Direction::Down, None) => format!("SUMPRODUCT({cells},{block})"),
+        (None, Direction::Down, Some(by)) => format!("SUMPRODUCT({cells},{block},{by})"),
         // A comparison of a column with a row is a table in both programs, without array entry.
-        (None, Direction::Across) => {
-            format!("SUMPRODUCT(({labels}={})*{block}*{cells})", refer(home, &axis.at))
+        (None, Direction::Across, None) => format!("SUMPRODUCT(({labels}={years})*{block}*{cells})"),
+        (None, Direction::Across, Some(by)) => format!("SUMPRODUCT(({labels}={years})*{block}*{by}*{cells})"),
+        (Some(at), Direction::Across, Some(by)) => {
+            format!("SUMPRODUCT(({labels}={years})*{by}*{cells}*{at})")
         }
     };
     let mut text = format!("{}{product}", scale(flows, home));
@@ -161,6 +167,7 @@ pub fn pv_expression(
         let at = factors.map_or_else(|| layout.factors(choice), SheetRange::clone);
         let cell = nth(at.range, last);
         text.push_str(&format!("{residual}*{}{}", prefix(home, &at.sheet), cell_text(cell, true, true)));
+        text.push_str(&times_last(layout, choice, stream, home));
     }
     if flows.tail.is_some() {
         let cell = layout.cell(layout.rows[choice].streams[stream], Column::Tail);
@@ -171,9 +178,36 @@ pub fn pv_expression(
 }
 
 /// The undiscounted total of one stream as an expression for a formula on sheet `home`.
-pub fn sum_expression(stream: &Stream, home: &str) -> String {
-    let total = format!("{}SUM({})", scale(stream, home), refer(home, &stream.at));
-    format!("{total}{}", residual(stream, home).unwrap_or_default())
+pub fn sum_expression(
+    appraisal: &Appraisal,
+    layout: &Layout,
+    choice: usize,
+    stream: usize,
+    home: &str,
+) -> String {
+    let flows = &appraisal.choices[choice].streams[stream];
+    let axis = &appraisal.axes[appraisal.choices[choice].axis];
+    let cells = refer(home, &flows.at);
+    let sum = match (layout.multipliers(choice, stream), axis.direction) {
+        (None, _) => format!("SUM({cells})"),
+        (Some(by), Direction::Down) => format!("SUMPRODUCT({cells},{})", refer(home, &by)),
+        (Some(by), Direction::Across) => {
+            let (labels, by) = (refer(home, &layout.labels(choice)), refer(home, &by));
+            format!("SUMPRODUCT(({labels}={})*{by}*{cells})", refer(home, &axis.at))
+        }
+    };
+    let total = format!("{}{sum}", scale(flows, home));
+    match residual(flows, home) {
+        Some(residual) => format!("{total}{residual}{}", times_last(layout, choice, stream, home)),
+        None => total,
+    }
+}
+
+/// The multiplier of the last year as `*Discounting!$G$30`; empty where flows are not multiplied.
+fn times_last(layout: &Layout, choice: usize, stream: usize, home: &str) -> String {
+    let last = layout.multipliers(choice, stream).map(|at| at.range.last);
+    let text = |cell| format!("*{}{}", prefix(home, &layout.names.discounting), cell_text(cell, true, true));
+    last.map(text).unwrap_or_default()
 }
 
 /// One cell as a range.
@@ -298,7 +332,7 @@ impl Maker<'_> {
             TargetRole::Factor => Some(self.look_up(&self.layout.factors(self.choice), i)),
             TargetRole::Rates => Some(self.look_up(&self.layout.forward(self.choice), i)),
             TargetRole::PvByYear(Some(name)) => {
-                let flow = self.flow(&choice.streams[find(choice, name)?], i, true);
+                let flow = self.flow(find(choice, name)?, i, true);
                 let text = format!("{flow}*{}", self.factor(i));
                 (text.len() <= MAX_FORMULA).then_some(text)
             }
@@ -313,7 +347,7 @@ impl Maker<'_> {
                     } else {
                         ""
                     });
-                    sum.push_str(&self.flow(stream, i, false));
+                    sum.push_str(&self.flow(k, i, false));
                 }
                 let text = format!("({sum})*{}", self.factor(i));
                 // A number is left where so many streams do not fit into one formula.
@@ -363,14 +397,17 @@ impl Maker<'_> {
     }
 
     /// One flow after unit, sign, uplift and residual; in brackets where it is a sum.
-    fn flow(&self, stream: &Stream, i: usize, leading: bool) -> String {
+    fn flow(&self, s: usize, i: usize, leading: bool) -> String {
+        let stream = &self.appraisal.choices[self.choice].streams[s];
+        let by = self.layout.multipliers(self.choice, s).map(|at| self.look_up(&at, i));
+        let by = by.map(|by| format!("*{by}")).unwrap_or_default();
         let cell = format!("{}{}", prefix(self.home, &stream.at.sheet), nth(stream.at.range, i));
         let text = format!("{}{cell}", scale(stream, self.home));
         let last = i + 1 == self.outcomes[self.choice].factors.len();
         match residual(stream, self.home).filter(|_| last) {
-            Some(residual) => format!("({text}{residual})"),
-            None if !leading && text.starts_with('-') => format!("({text})"),
-            None => text,
+            Some(residual) => format!("({text}{residual}){by}"),
+            None if !leading && text.starts_with('-') => format!("({text}{by})"),
+            None => format!("{text}{by}"),
         }
     }
 }

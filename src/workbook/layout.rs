@@ -11,6 +11,8 @@ pub const HEADING_ROW: u32 = 6;
 pub const DATA_ROW: u32 = 7;
 /// Columns of a block, and of the gap after it.
 const BLOCK_WIDTH: u32 = 5;
+/// Columns of a series of multipliers, and of the gap after it.
+const SERIES_WIDTH: u32 = 3;
 
 /// A block of four columns (year, offset, forward rate, factor), shared by all options whose years,
 /// base, curve and timing are the same.
@@ -20,6 +22,17 @@ pub struct Block {
     pub choice: usize,
     /// All options that use it.
     pub choices: Vec<usize>,
+    /// Its first column.
+    pub column: u32,
+    /// Its number of years.
+    pub rows: u32,
+}
+
+/// Two columns (year, multiplier), shared by all streams whose flows are multiplied alike, year by year.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Series {
+    /// Option and stream that use it, the first of which gives its numbers.
+    pub users: Vec<(usize, usize)>,
     /// Its first column.
     pub column: u32,
     /// Its number of years.
@@ -80,6 +93,8 @@ pub struct Layout {
     pub blocks: Vec<Block>,
     /// The block of each option.
     pub block_of: Vec<usize>,
+    /// Multipliers of flows, after the blocks; none where no flow is adjusted by year.
+    pub series: Vec<Series>,
     /// The first column of the table of present values.
     pub table: u32,
     /// Rows of each option in that table.
@@ -111,7 +126,8 @@ impl Layout {
             blocks[found].choices.push(i);
             block_of.push(found);
         }
-        let table = blocks.len() as u32 * BLOCK_WIDTH;
+        let series = series(appraisal, outcomes, blocks.len() as u32 * BLOCK_WIDTH);
+        let table = blocks.len() as u32 * BLOCK_WIDTH + series.len() as u32 * SERIES_WIDTH;
         let mut free = DATA_ROW..;
         let mut next = || free.next().unwrap_or(u32::MAX);
         let mut rows = Vec::new();
@@ -125,7 +141,7 @@ impl Layout {
             // A blank row between options.
             next();
         }
-        Layout { names: names.clone(), blocks, block_of, table, rows }
+        Layout { names: names.clone(), blocks, block_of, series, table, rows }
     }
 
     /// The block of an option.
@@ -163,12 +179,55 @@ impl Layout {
         self.rows[choice].increment.unwrap_or(self.rows[choice].absolute)
     }
 
+    /// The series of a stream, where its flows are multiplied by year.
+    pub fn series_of(&self, choice: usize, stream: usize) -> Option<usize> {
+        self.series.iter().position(|series| series.users.contains(&(choice, stream)))
+    }
+
+    /// The cells of the multipliers of a stream.
+    pub fn multipliers(&self, choice: usize, stream: usize) -> Option<SheetRange> {
+        let series = &self.series[self.series_of(choice, stream)?];
+        Some(self.down(series.column + 1, series.rows))
+    }
+
     fn column(&self, choice: usize, k: u32) -> SheetRange {
         let block = self.block(choice);
-        let cell = |row| Cell { row, col: block.column + k };
-        let range = Range { first: cell(DATA_ROW), last: cell(DATA_ROW + block.rows.max(1) - 1) };
+        self.down(block.column + k, block.rows)
+    }
+
+    /// So many cells of a column of numbers.
+    fn down(&self, col: u32, rows: u32) -> SheetRange {
+        let cell = |row| Cell { row, col };
+        let range = Range { first: cell(DATA_ROW), last: cell(DATA_ROW + rows.max(1) - 1) };
         SheetRange { sheet: self.names.discounting.clone(), range }
     }
+}
+
+/// Every distinct series of multipliers, from column `first` on.
+fn series(appraisal: &Appraisal, outcomes: &[ChoiceOutcome], first: u32) -> Vec<Series> {
+    let mut all: Vec<Series> = Vec::new();
+    for (c, choice) in appraisal.choices.iter().enumerate() {
+        for (s, stream) in choice.streams.iter().enumerate() {
+            let Some(values) = &outcomes[c].streams[s].multipliers else { continue };
+            let same = |series: &&mut Series| {
+                let (other_choice, other) = series.users[0];
+                let from = &appraisal.choices[other_choice];
+                from.axis == choice.axis
+                    && from.base == choice.base
+                    && from.prices == choice.prices
+                    && from.streams[other].growth == stream.growth
+                    && outcomes[other_choice].streams[other].multipliers.as_ref() == Some(values)
+            };
+            match all.iter_mut().find(same) {
+                Some(series) => series.users.push((c, s)),
+                None => {
+                    let column = first + all.len() as u32 * SERIES_WIDTH;
+                    all.push(Series { users: vec![(c, s)], column, rows: values.len() as u32 });
+                }
+            }
+        }
+    }
+    all
 }
 
 /// A label as a cell holds it.

@@ -3,7 +3,7 @@
 use std::collections::BTreeMap;
 
 use hence_core::{
-    Curve, Eras, IRR_INTERVAL, cost_per_effect, discounted_payback, dot, era_shares, internal_rates,
+    Curve, Eras, IRR_INTERVAL, Tail, cost_per_effect, discounted_payback, dot, era_shares, internal_rates,
     mean_time, npv_per_budget, sum,
 };
 
@@ -28,18 +28,16 @@ pub(crate) struct Further {
 impl Further {
     /// Lists the flows that follow, each in the stream's own direction.
     pub fn of(
-        stream: &Stream,
+        tail: &Tail,
         last_flow: f64,
         clock: &Clock,
         curve: &Curve,
         base_year: Option<i32>,
     ) -> hence_core::Result<Self> {
-        let (Some(tail), Some(&last)) = (&stream.tail, clock.years.last()) else {
-            return Ok(Further::default());
-        };
-        let endless = tail.value.to.is_none();
+        let Some(&last) = clock.years.last() else { return Ok(Further::default()) };
+        let endless = tail.to.is_none();
         let up_to = if endless { LISTED } else { f64::from(i32::MAX) };
-        let flows = tail.value.flows(last, last_flow, base_year, up_to)?;
+        let flows = tail.flows(last, last_flow, base_year, up_to)?;
         let valued = flows.into_iter().map(|(years, flow)| {
             let factor = curve.timed_factor(years, clock.timing)?;
             Ok((years, flow, factor))

@@ -15,6 +15,8 @@ pub struct StreamOutcome {
     pub pv_tail: f64,
     /// The sum of both.
     pub pv: f64,
+    /// What multiplied the flow of each year besides sign, unit and uplift (prices); none where nothing did.
+    pub multipliers: Option<Vec<f64>>,
 }
 
 /// Totals of an option, or of its increment over the baseline.
@@ -49,6 +51,8 @@ pub struct ChoiceOutcome {
     pub base_words: String,
     /// The timing as a sentence with numbers.
     pub timing_sentence: String,
+    /// The prices of the flows in words, where the workbook says anything of them.
+    pub prices: Option<String>,
     /// Offset of each year's flow (with an averaged position: of the year's end).
     pub offsets: Vec<f64>,
     /// Factor of each year.

@@ -44,6 +44,8 @@ pub struct OptionReport {
     pub base: String,
     /// The timing as a sentence with numbers.
     pub timing: String,
+    /// The prices of the flows in words, where the workbook says anything of them.
+    pub prices: Option<String>,
     /// As it stands.
     pub absolute: Totals,
     /// Over the baseline, where there is one.
@@ -131,6 +133,7 @@ pub(crate) fn option_reports(
             basis_words: outcome.basis.words(),
             base: outcome.base_words.clone(),
             timing: outcome.timing_sentence.clone(),
+            prices: outcome.prices.clone(),
             absolute: outcome.absolute,
             increment: outcome.increment,
             above: names(i, &|kind| kind != StreamKind::Cost),

@@ -146,9 +146,6 @@ const fn but(info: RoleInfo, status: Status) -> RoleInfo {
     RoleInfo { status, ..info }
 }
 
-const PRICES_LATER: Status = Status::Later(
-    "prices are not converted yet: enter flows and rate in one price basis, both real or both nominal",
-);
 const WELFARE_LATER: Status =
     Status::Later("welfare measures are not computed from workbooks yet: leave this name out");
 const SECOND_BASIS: Status = Status::SupportedAlone(
@@ -223,17 +220,26 @@ pub const ROLES: &[RoleInfo] = &[
         "value left at the last year, in the stream's unit",
     ),
     row(Role::Tail, "tail", Way::In, Takes::Stream, "what follows the last year: `growing 1%, for ever`"),
-    but(
-        row(Role::PriceBasis, "price_basis", Way::In, Takes::NoStream, "`real 2022` or `nominal`"),
-        PRICES_LATER,
+    row(
+        Role::PriceBasis,
+        "price_basis",
+        Way::In,
+        Takes::NoStream,
+        "prices of the flows: `real 2022`, `real` or `nominal`",
     ),
-    but(
-        row(Role::Prices, "prices", Way::In, Takes::NoStream, "a price index or an inflation rate"),
-        PRICES_LATER,
+    row(
+        Role::Prices,
+        "prices",
+        Way::In,
+        Takes::NoStream,
+        "an index along the years or an inflation rate, by which flows in money of the day are made real",
     ),
-    but(
-        row(Role::Growth, "growth", Way::In, Takes::Stream, "relative price growth of a stream"),
-        PRICES_LATER,
+    row(
+        Role::Growth,
+        "growth",
+        Way::In,
+        Takes::Stream,
+        "growth of a stream's price against others, a rate a year from the price base",
     ),
     but(
         row(Role::Consumption, "consumption", Way::In, Takes::NoStream, "a path of consumption per head"),

@@ -5,7 +5,8 @@ use hence_core::{
     sum,
 };
 
-use crate::appraisal::{Appraisal, COMMAND_LINE, Choice, Label, Stream, StreamKind};
+use crate::adjust;
+use crate::appraisal::{Appraisal, Axis, COMMAND_LINE, Choice, Label, Stream, StreamKind};
 use crate::clock::{Clock, base_words, base_year, label_words, sentence};
 use crate::measuring::{Further, Moments, measure_gross, measure_net, measure_units};
 use crate::outcome::{ChoiceOutcome, StreamOutcome, Totals};
@@ -73,7 +74,7 @@ fn overflow(choice: &Choice, outcome: &ChoiceOutcome) -> Option<Problem> {
 }
 
 /// The place of what was given: its cell, else where it came from.
-fn place_of(at: &Option<SheetRange>, from: &str) -> Place {
+pub(crate) fn place_of(at: &Option<SheetRange>, from: &str) -> Place {
     match at {
         Some(at) => Place::cells(&at.sheet, at.range).called(from),
         None => Place::name(from),
@@ -161,6 +162,7 @@ fn value_choice(
     for warning in basis.warnings() {
         push_once(problems, Problem::warning("basis-note", basis_place(), warning));
     }
+    adjust::check_basis(choice, &basis, basis_place(), problems)?;
     let timing = timing_in_force(choice, &basis, problems);
     let clock = Clock::new(axis, &choice.base.value, timing)?;
     warn_timing(choice, timing, &basis, &clock, problems);
@@ -179,8 +181,7 @@ fn value_choice(
     }
     let (mut streams, mut further) = (Vec::new(), Vec::new());
     for stream in &choice.streams {
-        let tail_base = tail_base(&axis.labels, &clock, choice);
-        let (outcome, later) = value_stream(stream, &clock, &curve, &factors, tail_base)?;
+        let (outcome, later) = value_stream(stream, (choice, axis), &clock, &curve, &factors)?;
         streams.push(outcome);
         further.push(later);
     }
@@ -195,6 +196,7 @@ fn value_choice(
     let mut outcome = ChoiceOutcome {
         base_words: base_words(&choice.base.value),
         timing_sentence: sentence(axis, &clock, &factors),
+        prices: adjust::words(choice),
         timing: clock.timing,
         offsets: clock.offsets.clone(),
         forward: clock.offsets.iter().map(|t| yearly_rate(&curve, *t)).collect(),
@@ -248,37 +250,42 @@ fn push_once(problems: &mut Vec<Problem>, problem: Problem) {
 
 fn value_stream(
     stream: &Stream,
+    (choice, axis): (&Choice, &Axis),
     clock: &Clock,
     curve: &Curve,
     factors: &[f64],
-    base_year: Option<i32>,
 ) -> Result<(StreamOutcome, Further)> {
+    let base_year = tail_base(&axis.labels, clock, choice);
+    let (multipliers, tail) = (adjust::multipliers(stream, choice, axis)?, adjust::tail(stream, choice)?);
+    let multiplier = |i: usize| multipliers.as_ref().map_or(1.0, |all| all[i]);
     let scale = stream.sign * stream.unit * (1.0 + stream.uplift.value);
     // Adding zero turns -0 into 0, which no cell should show.
-    let mut flows: Vec<f64> = stream.raw.iter().map(|x| x * scale + 0.0).collect();
+    let mut flows: Vec<f64> =
+        stream.raw.iter().enumerate().map(|(i, x)| x * scale * multiplier(i) + 0.0).collect();
     let last = flows.len() - 1;
     let last_flow = flows[last];
     if let Some(residual) = &stream.residual {
-        let amount = residual.value * stream.unit;
+        // Left over in the prices of the last year, as its flow is.
+        let amount = residual.value * stream.unit * multiplier(last);
         flows[last] += if stream.kind == StreamKind::Cost { -amount } else { amount };
     }
     let place = || Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
     if !flows.iter().all(|x| x.is_finite()) {
         return Err(too_large(place(), "a flow").into());
     }
-    let (pv_tail, further) = match &stream.tail {
-        None => (0.0, Further::default()),
-        Some(tail) => {
-            let failed = |error: hence_core::Error| from_core(&error, place_of(&tail.at, &tail.from));
+    let (pv_tail, further) = match (&stream.tail, &tail) {
+        (None, _) | (_, None) => (0.0, Further::default()),
+        (Some(given), Some(tail)) => {
+            let failed = |error: hence_core::Error| from_core(&error, place_of(&given.at, &given.from));
             let years = clock.years[last];
-            let value = tail.value.timed_present_value(curve, years, clock.timing, last_flow, base_year);
-            let further = Further::of(stream, last_flow, clock, curve, base_year);
+            let value = tail.timed_present_value(curve, years, clock.timing, last_flow, base_year);
+            let further = Further::of(tail, last_flow, clock, curve, base_year);
             (value.map_err(failed)?, further.map_err(failed)?)
         }
     };
     let pv_by_year: Vec<f64> = flows.iter().zip(factors).map(|(x, d)| x * d).collect();
     let pv = sum(&[dot(&flows, factors), pv_tail]);
-    let outcome = StreamOutcome { undiscounted: sum(&flows), flows, pv_by_year, pv_tail, pv };
+    let outcome = StreamOutcome { undiscounted: sum(&flows), flows, pv_by_year, pv_tail, pv, multipliers };
     if outcome.pv.is_finite() && outcome.undiscounted.is_finite() {
         Ok((outcome, further))
     } else {
@@ -293,11 +300,10 @@ pub(crate) fn npv_on(appraisal: &Appraisal, choice: &Choice, curve: &Curve, timi
     let factors: hence_core::Result<Vec<f64>> =
         (0..clock.offsets.len()).map(|i| clock.factor(curve, i)).collect();
     let factors = factors.map_err(|error| from_core(&error, Place::name(&choice.name)))?;
-    let tail_base = tail_base(&axis.labels, &clock, choice);
     let mut terms = Vec::new();
     for stream in &choice.streams {
         let (above, below) = side(stream.kind);
-        terms.push((above - below) * value_stream(stream, &clock, curve, &factors, tail_base)?.0.pv);
+        terms.push((above - below) * value_stream(stream, (choice, axis), &clock, curve, &factors)?.0.pv);
     }
     Ok(sum(&terms))
 }

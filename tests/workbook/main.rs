@@ -17,6 +17,7 @@ mod numbers;
 mod own;
 mod package;
 mod patch;
+mod prices;
 mod readme;
 mod references;
 mod resolve;

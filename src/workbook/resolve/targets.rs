@@ -204,12 +204,19 @@ fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(SheetRange, String)> {
         inputs.extend(
             choice.timing.iter().filter_map(|timing| Some((timing.at.clone()?, timing.from.clone()))),
         );
+        let prices = &choice.prices;
+        inputs
+            .extend(prices.declared.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));
+        inputs.extend(prices.levels.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));
         inputs.extend(choice.effects.iter().map(|effect| (effect.at.clone(), effect.name.clone())));
         for stream in &choice.streams {
             inputs.push((stream.at.clone(), stream.from.clone()));
             inputs.extend(stream.uplift.at.iter().map(|at| (at.clone(), stream.uplift.from.clone())));
             inputs.extend(
                 stream.residual.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))),
+            );
+            inputs.extend(
+                stream.growth.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))),
             );
             inputs
                 .extend(stream.tail.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));

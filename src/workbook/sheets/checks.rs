@@ -31,6 +31,8 @@ pub(super) struct Checks {
     pub awaiting: usize,
     /// Number of checks that have a second route.
     pub independent: usize,
+    /// Of all checks, those of multipliers of flows.
+    pub multipliers: usize,
 }
 
 /// Where the parts of an option's section stand.
@@ -44,6 +46,8 @@ pub(super) struct Section {
     pub streams: u32,
     /// Costs; benefits, net, the increments and the sum of factors follow.
     pub sums: u32,
+    /// The first multiplier of flows.
+    pub multipliers: u32,
     /// The first target cell.
     pub cells: u32,
     /// The row after its end.
@@ -101,6 +105,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
         differing: lines.iter().filter(|(_, l)| !l.agrees()).map(|(_, l)| l.place.clone()).collect(),
         awaiting: lines.iter().filter(|(_, l)| l.awaits).count(),
         independent: lines.iter().filter(|(_, l)| l.rebuilt.is_some()).count(),
+        multipliers: (0..make.sections.len()).map(|c| make.series_in(c).len() * make.rows(c)).sum(),
     }
 }
 
@@ -153,15 +158,21 @@ impl<'a> Maker<'a> {
             let streams = years + self.layout.block(c).rows;
             let sums = streams + choice.streams.len() as u32;
             let increments = if self.layout.rows[c].increment.is_some() { 3 } else { 0 };
-            let start = sums + 4 + increments;
+            let multipliers = sums + 4 + increments;
+            let start = multipliers + (self.series_in(c).len() * self.rows(c)) as u32;
             let end = start + cells.len() as u32;
-            self.sections.push(Section { top: row, years, streams, sums, cells: start, end });
+            self.sections.push(Section { top: row, years, streams, sums, multipliers, cells: start, end });
             self.targets.push(cells);
             row = end + 1;
         }
         for rebuilt in &mut self.rebuilt {
             row = rebuilt.place(row + 1);
         }
+    }
+
+    /// Number of an option's years.
+    fn rows(&self, c: usize) -> usize {
+        self.layout.block(c).rows as usize
     }
 
     /// The target whose cells stand in the lines of the years.
@@ -203,6 +214,7 @@ impl<'a> Maker<'a> {
             lines.push((at.streams + s as u32, self.stream(c, s)));
         }
         self.sums(c, lines);
+        self.multiplier_lines(c, lines);
         for (k, cell) in self.targets[c].iter().enumerate() {
             let row = at.cells + k as u32;
             lines.push((row, self.target(c, cell, row)));
@@ -216,14 +228,7 @@ impl<'a> Maker<'a> {
         let axis = &self.input.appraisal.axes[choice.axis];
         let label = &axis.labels[i];
         let row = self.sections[c].years + i as u32;
-        let (value, style) = match label_value(label, self.input.appraisal.date1904) {
-            LabelValue::Number(x, true) => (Cached::Number(x), Style::Date),
-            LabelValue::Number(x, false) => (
-                Cached::Number(x),
-                if matches!(label, Label::Offset(_)) { Style::Offset } else { Style::Year },
-            ),
-            LabelValue::Text(text) => (Cached::Text(text), Style::Text),
-        };
+        let (value, style) = label_live(label, self.input.appraisal.date1904);
         let source = refer_cell(self.home, &axis.at.sheet, nth(axis.at.range, i));
         let target = self.factor_target(c).map(|t| &choice.targets[t]);
         let factors = self.layout.factors(c);
@@ -272,13 +277,15 @@ impl<'a> Maker<'a> {
         let rebuilt = self.rebuilt(c);
         let multiplier = stream.sign * stream.unit * (1.0 + stream.uplift.value);
         let mut sum = 0.0;
+        let by = |i| self.multiplier(c, s, i).map_or(1.0, |(_, by)| by);
         for (i, raw) in stream.raw.iter().enumerate() {
-            sum += raw * rebuilt.factor(i)?;
+            sum += raw * rebuilt.factor(i)? * by(i);
         }
         let mut total = multiplier * sum;
         if let Some(given) = &stream.residual {
-            let last = rebuilt.factor(stream.raw.len().checked_sub(1)?)?;
-            total += residual_sign(stream.kind) * stream.unit * given.value * last;
+            let year = stream.raw.len().checked_sub(1)?;
+            let last = rebuilt.factor(year)?;
+            total += residual_sign(stream.kind) * stream.unit * given.value * last * by(year);
         }
         let tail = match (&stream.tail, self.rebuilt_tail(c, s)) {
             (None, _) => 0.0,
@@ -312,9 +319,18 @@ impl<'a> Maker<'a> {
             let last = at.streams - 1;
             let flows = column(col::FLOWS + s as u32, at.years, last);
             let factors = column(col::REBUILT, at.years, last);
-            let mut text = format!("{}SUMPRODUCT({flows},{factors})", scale(stream, self.home));
+            let multipliers = self.multiplier_rows(c, s);
+            let by = multipliers.map(|(from, to)| format!(",{}", column(col::REBUILT, from, to)));
+            let mut text = format!(
+                "{}SUMPRODUCT({flows},{factors}{})",
+                scale(stream, self.home),
+                by.unwrap_or_default()
+            );
             if let Some(residual) = residual(stream, self.home) {
                 text.push_str(&format!("{residual}*{}", absolute_cell(last, col::REBUILT)));
+                if let Some((_, last)) = multipliers {
+                    text.push_str(&format!("*{}", absolute_cell(last, col::REBUILT)));
+                }
             }
             if let Some((tail, _)) = tail {
                 text.push_str(&format!("+{tail}"));
@@ -431,6 +447,17 @@ pub(super) fn held(held: &Held) -> Cached {
         Held::Text(text) => Cached::Text(text.clone()),
         Held::Formula { shown: Some(shown), .. } if !shown.starts_with('#') => Cached::Text(shown.clone()),
         Held::Blank | Held::Error(_) | Held::Formula { value: None, .. } => Cached::None,
+    }
+}
+
+/// A label as a cell holds it, and how it looks.
+pub(super) fn label_live(label: &Label, date1904: bool) -> (Cached, Style) {
+    match label_value(label, date1904) {
+        LabelValue::Number(x, true) => (Cached::Number(x), Style::Date),
+        LabelValue::Number(x, false) => {
+            (Cached::Number(x), if matches!(label, Label::Offset(_)) { Style::Offset } else { Style::Year })
+        }
+        LabelValue::Text(text) => (Cached::Text(text), Style::Text),
     }
 }
 

@@ -6,6 +6,7 @@ mod checks;
 mod coverage;
 mod discounting;
 mod lines;
+mod multipliers;
 mod offsets;
 pub(crate) mod own;
 mod rebuild;

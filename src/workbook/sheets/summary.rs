@@ -7,6 +7,7 @@ use super::coverage::{Coverage, places};
 use super::discounting::table_ref;
 use super::lines::DIFFERS;
 use super::{AuditInput, charts::era_words, charts::thousands};
+use crate::adjust;
 use crate::appraisal::{StreamKind, TargetRole};
 use crate::formulas::{ENDLESS_IRR, NO_IRR, no_ratio, one, refer};
 use crate::layout::{Column, Layout};
@@ -167,6 +168,7 @@ impl Page {
             self.pair("In words, with its source", &outcome.basis.words());
             self.pair("Base", &format!("{} (from {})", outcome.base_words, choice.base.from));
             self.pair("Timing", &outcome.timing_sentence);
+            self.pair("Prices", outcome.prices.as_deref().unwrap_or(""));
             self.row += 1;
         }
         self.sheet.paragraph(self.row, 0, LAST, Style::Strong, super::CAUTION);
@@ -340,16 +342,21 @@ impl Page {
         }
         self.row += 1;
         let factors: usize = input.outcomes.iter().map(|o| o.factors.len()).sum();
+        let multipliers = checks.multipliers;
         let in_lines = input.cells.iter().filter(|cell| is_factor(input, cell)).count();
         let cells = input.cells.len() - in_lines;
-        let rest = checks.count.saturating_sub(factors + cells + checks.settings);
+        let rest = checks.count.saturating_sub(factors + multipliers + cells + checks.settings);
         for (label, number, allowed) in [
             ("Factors: second route, Discounting, filled cells", factors, "1e-9 relative"),
+            ("Multipliers of flows: prices and their growth", multipliers, "1e-9 relative"),
             ("Present values and totals on Discounting", rest, "1e-9 of the gross present value"),
             ("What the workbook states: base, basis, timing and the like", checks.settings, "none"),
             ("Other filled or compared cells", cells, "half of the last displayed unit, or 1e-9"),
             ("Undiscounted totals of valued rows", coverage.valued, "1e-9 relative, or 0.000001"),
         ] {
+            if number == 0 && label.starts_with("Multipliers") {
+                continue;
+            }
             self.sheet.text(self.row, 0, Style::Wrapped, label);
             self.sheet.number(self.row, 1, Style::Year, number as f64);
             // Room between the number and what it may differ by.
@@ -411,6 +418,9 @@ fn adjustments(input: &AuditInput<'_>) -> Vec<String> {
             }
             if let Some(tail) = &stream.tail {
                 parts.push(format!("going on after the last year: {}", tail.value));
+            }
+            if choice.prices.levels.is_some() || stream.growth.is_some() {
+                parts.push(adjust::multiplier_words(stream, choice));
             }
             if !parts.is_empty() {
                 texts.push(format!("{}, {}: {}.", choice.name, stream.name, parts.join("; ")));

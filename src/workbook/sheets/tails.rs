@@ -8,6 +8,7 @@ use super::lines::col;
 use super::offsets::shift;
 use super::rebuild::{base_year, constant};
 use super::second_route::Form;
+use crate::adjust;
 use crate::appraisal::{Label, Stream};
 use crate::formulas::scale;
 use crate::writer::MAX_FORMULA;
@@ -20,7 +21,8 @@ impl Maker<'_> {
     /// (gamma and whole-horizon rates, flows before the base).
     pub(super) fn rebuilt_tail(&self, c: usize, s: usize) -> Option<Rebuilt> {
         let stream = &self.input.appraisal.choices[c].streams[s];
-        let tail = &stream.tail.as_ref()?.value;
+        let choice = &self.input.appraisal.choices[c];
+        let tail = &adjust::tail(stream, choice).ok()??;
         let count = self.further(c, tail)?;
         let rebuilt = self.rebuilt(c);
         let last = rebuilt.offsets.len().checked_sub(1)?;
@@ -37,8 +39,10 @@ impl Maker<'_> {
             value += share * unit;
         }
         let flow = absolute_cell(row, col::FLOWS + s as u32);
-        let text = format!("{}{flow}*{share}*({})", scale(stream, self.home), texts.join("+"));
-        let total = last_flow(stream)? * value;
+        let (by, times) = self.multiplier(c, s, last).unwrap_or((String::new(), 1.0));
+        let by = if by.is_empty() { by } else { format!("*{by}") };
+        let text = format!("{}{flow}{by}*{share}*({})", scale(stream, self.home), texts.join("+"));
+        let total = last_flow(stream)? * times * value;
         (text.len() <= MAX_FORMULA && total.is_finite()).then_some((text, total))
     }
 

@@ -122,6 +122,10 @@ impl Maker<'_> {
             text.push_str(&more);
             value += residual_sign(stream.kind) * stream.unit * given.value;
         }
+        if let Some((cell, by)) = self.multiplier(c, s, i) {
+            text = format!("({text})*{cell}");
+            value *= by;
+        }
         (text, value)
     }
 
