@@ -1,5 +1,7 @@
 //! The JSON documents: one shape a command, with a schema number.
 
+use std::collections::BTreeMap;
+
 use hence_workbook::problem::{Problem, Severity};
 use hence_workbook::report::{OptionReport, Report, Status};
 use serde::Serialize;
@@ -39,6 +41,8 @@ pub struct FilledOption {
     pub annual: Option<f64>,
     #[serde(skip_serializing_if = "Option::is_none")]
     pub prices: Option<String>,
+    #[serde(skip_serializing_if = "BTreeMap::is_empty")]
+    pub stream_bases: BTreeMap<String, String>,
 }
 
 #[derive(Serialize)]
@@ -62,6 +66,7 @@ impl From<&OptionReport> for FilledOption {
             ratio: totals.ratio,
             annual: totals.annual,
             prices: option.prices.clone(),
+            stream_bases: option.stream_bases.iter().map(|(s, b, _)| (s.clone(), b.clone())).collect(),
         }
     }
 }

@@ -259,6 +259,9 @@ fn details(option: &OptionReport) -> String {
         ));
     }
     text.push_str(".\n");
+    for (stream, basis, words) in &option.stream_bases {
+        text.push_str(&format!("    {stream} on a basis of its own: {basis}. {words}\n"));
+    }
     if let Some(companion) = &option.companion {
         text.push_str(&format!(
             "    Beside it, on {}: PV benefits {}, PV costs {}, NPV {}. {}\n",

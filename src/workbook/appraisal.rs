@@ -106,6 +106,8 @@ pub struct Stream {
     pub tail: Option<Given<hence_core::Tail>>,
     /// Growth of its price against other prices, a fraction a year from the price base, from `growth_<stream>`.
     pub growth: Option<Given<f64>>,
+    /// A basis of its own, from `basis_<stream>`; else it is discounted on the option's.
+    pub basis: Option<Given<String>>,
 }
 
 /// The prices that flows are entered and valued in, as far as they are stated.
@@ -166,6 +168,8 @@ pub struct Effect {
 pub enum TargetRole {
     /// A factor a year.
     Factor,
+    /// A factor a year, on the basis of a stream.
+    StreamFactor(String),
     /// PV by year of a stream, or of the net where there is no stream.
     PvByYear(Option<String>),
     /// PV in one cell, of a stream or of the net.

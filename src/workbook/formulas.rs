@@ -105,16 +105,22 @@ pub fn residual(stream: &Stream, home: &str) -> Option<String> {
     })
 }
 
-/// Where the factors of an option stand that formulas may use: the analyst's own factor cells, if
+/// Where the factors of an option (of a stream, where it has a basis of its own) stand that formulas may use: the analyst's own factor cells, if
 /// hence fills them or found them in agreement.
 pub fn analyst_factors<'a>(
     appraisal: &'a Appraisal,
     layout: &Layout,
     outcomes: &[ChoiceOutcome],
     choice: usize,
+    stream: Option<usize>,
 ) -> Option<&'a SheetRange> {
     let own = format!("INDEX({}!", quote_sheet(&layout.names.discounting));
-    let factors = &outcomes[choice].factors;
+    let factors = stream.map_or(&outcomes[choice].factors[..], |s| outcomes[choice].factors_of(s));
+    // A stream on its option's basis uses its option's factors.
+    let role =
+        stream.filter(|&s| outcomes[choice].streams[s].own.is_some()).map_or(TargetRole::Factor, |s| {
+            TargetRole::StreamFactor(appraisal.choices[choice].streams[s].name.clone())
+        });
     let usable = |(i, held): (usize, &Held)| match held {
         Held::Blank | Held::Number(_) => true,
         Held::Formula { text, value, .. } => {
@@ -126,7 +132,7 @@ pub fn analyst_factors<'a>(
     appraisal.choices[choice]
         .targets
         .iter()
-        .filter(|t| t.role == TargetRole::Factor && t.held.len() == factors.len())
+        .filter(|t| t.role == role && t.held.len() == factors.len())
         .find(|t| t.held.iter().enumerate().all(usable))
         .map(|t| &t.at)
 }
@@ -144,9 +150,9 @@ pub fn pv_expression(
     let flows = &appraisal.choices[choice].streams[stream];
     let axis = &appraisal.axes[appraisal.choices[choice].axis];
     let labels = refer(home, &layout.labels(choice));
-    let block = refer(home, &layout.factors(choice));
+    let block = refer(home, &layout.stream_factors(choice, stream));
     let cells = refer(home, &flows.at);
-    let factors = analyst_factors(appraisal, layout, outcomes, choice);
+    let factors = analyst_factors(appraisal, layout, outcomes, choice, Some(stream));
     let years = refer(home, &axis.at);
     let multipliers = layout.multipliers(choice, stream).map(|at| refer(home, &at));
     let product = match (factors.map(|at| refer(home, at)), axis.direction, &multipliers) {
@@ -164,7 +170,7 @@ pub fn pv_expression(
     let mut text = format!("{}{product}", scale(flows, home));
     let last = outcomes[choice].factors.len().saturating_sub(1);
     if let Some(residual) = residual(flows, home) {
-        let at = factors.map_or_else(|| layout.factors(choice), SheetRange::clone);
+        let at = factors.map_or_else(|| layout.stream_factors(choice, stream), SheetRange::clone);
         let cell = nth(at.range, last);
         text.push_str(&format!("{residual}*{}{}", prefix(home, &at.sheet), cell_text(cell, true, true)));
         text.push_str(&times_last(layout, choice, stream, home));
@@ -230,9 +236,14 @@ pub fn expected(
     let number = |x: f64| vec![Cached::Number(x)];
     match &target.role {
         TargetRole::Factor => outcome.factors.iter().map(|&d| Cached::Number(d)).collect(),
+        TargetRole::StreamFactor(name) => {
+            let own = find(&appraisal.choices[choice], name).map(|s| outcome.factors_of(s));
+            own.unwrap_or(&outcome.factors).iter().map(|&d| Cached::Number(d)).collect()
+        }
         TargetRole::Rates => outcome.forward.iter().map(|r| Cached::Number(r.unwrap_or(0.0))).collect(),
         TargetRole::PvByYear(None) => {
-            outcome.net.iter().zip(&outcome.factors).map(|(x, d)| Cached::Number(x * d)).collect()
+            let sides = || appraisal.choices[choice].streams.iter().map(|s| side(s.kind));
+            (0..outcome.net.len()).map(|i| Cached::Number(outcome.net_value(i, sides()))).collect()
         }
         TargetRole::PvByYear(Some(name)) => match stream(name) {
             Some(s) => s.pv_by_year.iter().map(|&x| Cached::Number(x)).collect(),
@@ -330,13 +341,18 @@ impl Maker<'_> {
         let sums = self.layout.sums(self.choice);
         match &target.role {
             TargetRole::Factor => Some(self.look_up(&self.layout.factors(self.choice), i)),
+            TargetRole::StreamFactor(name) => {
+                let factors = self.layout.stream_factors(self.choice, find(choice, name)?);
+                Some(self.look_up(&factors, i))
+            }
             TargetRole::Rates => Some(self.look_up(&self.layout.forward(self.choice), i)),
             TargetRole::PvByYear(Some(name)) => {
-                let flow = self.flow(find(choice, name)?, i, true);
-                let text = format!("{flow}*{}", self.factor(i));
+                let s = find(choice, name)?;
+                let text = format!("{}*{}", self.flow(s, i, true), self.factor(Some(s), i));
                 (text.len() <= MAX_FORMULA).then_some(text)
             }
             TargetRole::PvByYear(None) => {
+                let own = self.outcomes[self.choice].streams.iter().any(|stream| stream.own.is_some());
                 let mut sum = String::new();
                 for (k, stream) in choice.streams.iter().enumerate() {
                     let plus = side(stream.kind) > 0.0;
@@ -348,8 +364,11 @@ impl Maker<'_> {
                         ""
                     });
                     sum.push_str(&self.flow(k, i, false));
+                    if own {
+                        sum.push_str(&format!("*{}", self.factor(Some(k), i)));
+                    }
                 }
-                let text = format!("({sum})*{}", self.factor(i));
+                let text = if own { sum.clone() } else { format!("({sum})*{}", self.factor(None, i)) };
                 // A number is left where so many streams do not fit into one formula.
                 (!sum.is_empty() && text.len() <= MAX_FORMULA).then_some(text)
             }
@@ -386,13 +405,19 @@ impl Maker<'_> {
     }
 
     /// The analyst's factor cell where there is one, else the look-up.
-    fn factor(&self, i: usize) -> String {
-        match analyst_factors(self.appraisal, self.layout, self.outcomes, self.choice) {
+    fn factor(&self, stream: Option<usize>, i: usize) -> String {
+        match analyst_factors(self.appraisal, self.layout, self.outcomes, self.choice, stream) {
             Some(at) => {
                 let down = at.range.last.row > at.range.first.row;
                 format!("{}{}", prefix(self.home, &at.sheet), cell_text(nth(at.range, i), down, !down))
             }
-            None => self.look_up(&self.layout.factors(self.choice), i),
+            None => {
+                let factors = stream.map_or_else(
+                    || self.layout.factors(self.choice),
+                    |s| self.layout.stream_factors(self.choice, s),
+                );
+                self.look_up(&factors, i)
+            }
         }
     }
 

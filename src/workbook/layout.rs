@@ -1,5 +1,7 @@
 //! Where everything stands on the sheet Discounting, known before a formula or the sheet is made.
 
+use std::collections::BTreeMap;
+
 use crate::appraisal::{Appraisal, Label};
 use crate::outcome::ChoiceOutcome;
 use crate::references::{Cell, Range, SheetRange};
@@ -20,7 +22,9 @@ const SERIES_WIDTH: u32 = 3;
 pub struct Block {
     /// The first option that uses it, whose axis and outcome give its numbers.
     pub choice: usize,
-    /// All options that use it.
+    /// The stream of that option whose own basis it holds; else it is the option's.
+    pub stream: Option<usize>,
+    /// All options that use it, or one of whose streams does.
     pub choices: Vec<usize>,
     /// Its first column.
     pub column: u32,
@@ -93,6 +97,8 @@ pub struct Layout {
     pub blocks: Vec<Block>,
     /// The block of each option.
     pub block_of: Vec<usize>,
+    /// The block of each stream that has a basis of its own, by option and stream.
+    pub own_block_of: BTreeMap<(usize, usize), usize>,
     /// Multipliers of flows, after the blocks; none where no flow is adjusted by year.
     pub series: Vec<Series>,
     /// The first column of the table of present values.
@@ -111,7 +117,8 @@ impl Layout {
             let same = |block: &Block| {
                 let other = &appraisal.choices[block.choice];
                 let (a, b) = (&outcomes[i], &outcomes[block.choice]);
-                appraisal.axes[other.axis].labels == *labels
+                block.stream.is_none()
+                    && appraisal.axes[other.axis].labels == *labels
                     && other.base.value == choice.base.value
                     && a.curve == b.curve
                     && a.basis == b.basis
@@ -120,12 +127,13 @@ impl Layout {
             let found = blocks.iter().position(same).unwrap_or_else(|| {
                 let column = blocks.len() as u32 * BLOCK_WIDTH;
                 let rows = labels.len() as u32;
-                blocks.push(Block { choice: i, choices: Vec::new(), column, rows });
+                blocks.push(Block { choice: i, stream: None, choices: Vec::new(), column, rows });
                 blocks.len() - 1
             });
             blocks[found].choices.push(i);
             block_of.push(found);
         }
+        let own_block_of = own_blocks(appraisal, outcomes, &mut blocks);
         let series = series(appraisal, outcomes, blocks.len() as u32 * BLOCK_WIDTH);
         let table = blocks.len() as u32 * BLOCK_WIDTH + series.len() as u32 * SERIES_WIDTH;
         let mut free = DATA_ROW..;
@@ -141,12 +149,38 @@ impl Layout {
             // A blank row between options.
             next();
         }
-        Layout { names: names.clone(), blocks, block_of, series, table, rows }
+        Layout { names: names.clone(), blocks, block_of, own_block_of, series, table, rows }
     }
 
     /// The block of an option.
     pub fn block(&self, choice: usize) -> &Block {
         &self.blocks[self.block_of[choice]]
+    }
+
+    /// The block of a stream: that of its own basis, else its option's.
+    pub fn block_index(&self, choice: usize, stream: Option<usize>) -> usize {
+        let own = stream.and_then(|stream| self.own_block_of.get(&(choice, stream)));
+        own.copied().unwrap_or(self.block_of[choice])
+    }
+
+    /// The factors that a stream is discounted with.
+    pub fn stream_factors(&self, choice: usize, stream: usize) -> SheetRange {
+        let block = &self.blocks[self.block_index(choice, Some(stream))];
+        self.down(block.column + 3, block.rows)
+    }
+
+    /// Whose factors a block holds, in words: options, or a stream with its option where there are several.
+    pub fn whose(&self, k: usize, appraisal: &Appraisal) -> String {
+        let block = &self.blocks[k];
+        let name = |c: usize| appraisal.choices[c].name.clone();
+        let Some(_) = block.stream else {
+            return block.choices.iter().map(|&c| name(c)).collect::<Vec<_>>().join(", ");
+        };
+        let users = self.own_block_of.iter().filter(|(_, own)| **own == k).map(|((c, s), _)| {
+            let stream = &appraisal.choices[*c].streams[*s].name;
+            if appraisal.choices.len() > 1 { format!("{stream} ({})", name(*c)) } else { stream.clone() }
+        });
+        users.collect::<Vec<_>>().join(", ")
     }
 
     /// A cell of the table of present values.
@@ -201,6 +235,39 @@ impl Layout {
         let range = Range { first: cell(DATA_ROW), last: cell(DATA_ROW + rows.max(1) - 1) };
         SheetRange { sheet: self.names.discounting.clone(), range }
     }
+}
+
+/// Adds a block for every distinct basis that streams have of their own.
+fn own_blocks(
+    appraisal: &Appraisal,
+    outcomes: &[ChoiceOutcome],
+    blocks: &mut Vec<Block>,
+) -> BTreeMap<(usize, usize), usize> {
+    let mut own_block_of = BTreeMap::new();
+    for (c, choice) in appraisal.choices.iter().enumerate() {
+        for (s, stream) in outcomes[c].streams.iter().enumerate() {
+            let Some(own) = &stream.own else { continue };
+            let same = |block: &Block| {
+                let Some(other) = block.stream else { return false };
+                let from = &appraisal.choices[block.choice];
+                from.axis == choice.axis
+                    && from.base == choice.base
+                    && outcomes[block.choice].timing == outcomes[c].timing
+                    && outcomes[block.choice].streams[other].own.as_ref() == Some(own)
+            };
+            let found = blocks.iter().position(same).unwrap_or_else(|| {
+                let column = blocks.len() as u32 * BLOCK_WIDTH;
+                let rows = own.factors.len() as u32;
+                blocks.push(Block { choice: c, stream: Some(s), choices: Vec::new(), column, rows });
+                blocks.len() - 1
+            });
+            if !blocks[found].choices.contains(&c) {
+                blocks[found].choices.push(c);
+            }
+            own_block_of.insert((c, s), found);
+        }
+    }
+    own_block_of
 }
 
 /// Every distinct series of multipliers, from column `first` on.

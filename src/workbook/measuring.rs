@@ -61,7 +61,9 @@ impl Moments {
     pub fn of(choice: &Choice, outcome: &ChoiceOutcome, further: &[Further], clock: &Clock) -> Self {
         let mut moments = Moments { dated: Vec::new(), valued: Vec::new(), endless: false };
         for (i, (t, net)) in outcome.offsets.iter().zip(&outcome.net).enumerate() {
-            moments.add(clock, *t, *net, net * outcome.factors[i]);
+            let sides =
+                choice.streams.iter().map(|stream| side(stream.kind)).map(|(above, below)| above - below);
+            moments.add(clock, *t, *net, outcome.net_value(i, sides));
         }
         for (stream, further) in choice.streams.iter().zip(further) {
             let (above, below) = side(stream.kind);
@@ -126,15 +128,16 @@ pub(crate) fn measure_gross(outcome: &mut ChoiceOutcome, further: &[Further], cl
     let eras = Eras::default();
     let mut years: Vec<(f64, f64)> = Vec::new();
     let mut moments: Vec<(f64, f64)> = Vec::new();
-    for (stream, further) in outcome.streams.iter().zip(further) {
-        let own = outcome.offsets.iter().zip(&stream.flows).zip(&outcome.factors);
+    for (s, (stream, further)) in outcome.streams.iter().zip(further).enumerate() {
+        let curve = stream.own.as_ref().map_or(&outcome.curve, |own| &own.curve);
+        let own = outcome.offsets.iter().zip(&stream.flows).zip(outcome.factors_of(s));
         let own = own.map(|((t, flow), factor)| (*t, *flow, *factor));
         let later = further.flows.iter().map(|(years, flow, factor)| (clock.offset(*years), *flow, *factor));
         for (t, flow, factor) in own.chain(later) {
             years.push((t, flow * factor));
             for (at, share) in clock.moments(t) {
                 // Where an averaged flow's halves stand, each has the factor of its own moment.
-                let factor = if share == 1.0 { factor } else { outcome.curve.factor(at).unwrap_or(factor) };
+                let factor = if share == 1.0 { factor } else { curve.factor(at).unwrap_or(factor) };
                 moments.push((at, share * flow * factor));
             }
         }

@@ -70,6 +70,8 @@ pub struct OptionReport {
     pub era_shares: Vec<f64>,
     /// NPV per unit of the constrained cost.
     pub npv_per_budget: Option<f64>,
+    /// Streams that have a basis of their own: name, the basis and in words.
+    pub stream_bases: Vec<(String, String, String)>,
     /// Effects by name: cost per unit undiscounted, cost per unit discounted.
     pub effects: Vec<(String, Option<f64>, Option<f64>)>,
     /// The same under the companion schedule.
@@ -146,6 +148,15 @@ pub(crate) fn option_reports(
             mean_time: outcome.mean_time,
             era_shares: outcome.era_shares.clone(),
             npv_per_budget: outcome.npv_per_budget,
+            stream_bases: choice
+                .streams
+                .iter()
+                .zip(&outcome.streams)
+                .filter_map(|(stream, valued)| {
+                    let basis = &valued.own.as_ref()?.basis;
+                    Some((stream.name.clone(), basis.canonical(), basis.words()))
+                })
+                .collect(),
             effects: choice
                 .effects
                 .iter()

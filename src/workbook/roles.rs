@@ -115,8 +115,6 @@ pub enum Takes {
 pub enum Status {
     /// Read or filled.
     Supported,
-    /// Understood without a stream; with one it is refused, with this reason.
-    SupportedAlone(&'static str),
     /// Refused by name, with what to do instead.
     Later(&'static str),
 }
@@ -148,17 +146,16 @@ const fn but(info: RoleInfo, status: Status) -> RoleInfo {
 
 const WELFARE_LATER: Status =
     Status::Later("welfare measures are not computed from workbooks yet: leave this name out");
-const SECOND_BASIS: Status = Status::SupportedAlone(
-    "a second basis for one stream is not computed yet: value that stream in a workbook of its own, \
-     or name the basis without a stream",
-);
 
 /// The one table of roles.
 pub const ROLES: &[RoleInfo] = &[
     row(Role::Base, "base", Way::In, Takes::NoStream, "base year (number), financial year or date"),
-    but(
-        row(Role::Basis, "basis", Way::In, Takes::MayStream, "rate line, schedule id or a number"),
-        SECOND_BASIS,
+    row(
+        Role::Basis,
+        "basis",
+        Way::In,
+        Takes::MayStream,
+        "rate line, schedule id or a number; with a stream, a basis for that stream alone",
     ),
     row(Role::Timing, "timing", Way::In, Takes::NoStream, "positions: `flows middle, base end`"),
     row(
@@ -246,9 +243,12 @@ pub const ROLES: &[RoleInfo] = &[
         WELFARE_LATER,
     ),
     but(row(Role::Income, "income", Way::In, Takes::Stream, "income of a group"), WELFARE_LATER),
-    but(
-        row(Role::Factor, "factor", Way::Out, Takes::MayStream, "a discount factor for each year"),
-        SECOND_BASIS,
+    row(
+        Role::Factor,
+        "factor",
+        Way::Out,
+        Takes::MayStream,
+        "a discount factor for each year; with a stream, on that stream's basis",
     ),
     row(Role::Pv, "pv", Way::Out, Takes::MayStream, "present value by year, or the total in one cell"),
     row(Role::Rates, "rates", Way::Out, Takes::NoStream, "the workbook's own yearly rates"),

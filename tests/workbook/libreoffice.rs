@@ -269,6 +269,12 @@ fn turns() -> Vec<Turn> {
         turn(&multiplied, "Appraisal", &level, CellWrite::Number(70.0)),
         turn(&multiplied, "Discounting", "G20", CellWrite::Number(0.5)),
     ]);
+    let owned = CASES.iter().position(|case| case.own.1).expect("a case with factors of a stream");
+    turns.extend([
+        turn(&case_name(owned), "Appraisal", "E10", CellWrite::Text("1%".into())),
+        turn(&case_name(owned), "Appraisal", &CASES[owned].own_factor(7), CellWrite::Number(0.5)),
+        turn(&case_name(owned), "Discounting", "I12", CellWrite::Number(0.5)),
+    ]);
     let settings = CASES.iter().position(|case| case.settings).expect("a case with settings");
     for (cell, write, check) in [
         ("B4", CellWrite::Text("costs positive".into()), Check::After),

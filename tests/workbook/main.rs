@@ -27,6 +27,7 @@ mod scenario;
 mod sheets;
 mod small;
 mod stale;
+mod stream_basis;
 mod suggest;
 mod tools;
 mod verify;

@@ -15,7 +15,7 @@ use hence_workbook::sheets::VERDICT_AGREES;
 mod book;
 mod curves;
 mod model;
-mod published;
+pub mod published;
 mod recalculated;
 mod rules;
 

@@ -86,6 +86,7 @@ fn stream(
         residual: None,
         tail: None,
         growth: None,
+        basis: None,
     }
 }
 
@@ -271,6 +272,7 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
                 pv_tail,
                 pv,
                 multipliers: None,
+                own: None,
             }
         })
         .collect();

@@ -76,6 +76,7 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
             residual: None,
             tail: None,
             growth: None,
+            basis: None,
         });
     }
     if streams.is_empty() && !context.failed() {

@@ -261,7 +261,11 @@ fn names_of_kind(choice: &Choice, wanted: fn(StreamKind) -> bool) -> String {
 /// Units, uplifts and the like of streams that there are none of.
 fn check_settings(context: &mut Context, split: &Split, choices: &[Choice]) {
     let setting = |named: &&Named| {
-        matches!(named.name.role, Role::Unit | Role::Uplift | Role::Residual | Role::Tail | Role::Growth)
+        let about = matches!(
+            named.name.role,
+            Role::Unit | Role::Uplift | Role::Residual | Role::Tail | Role::Growth | Role::Basis
+        );
+        about && named.name.stream.is_some()
     };
     let own =
         split.groups.iter().zip(choices).map(|(group, choice)| (&group.named, std::slice::from_ref(choice)));

@@ -231,6 +231,7 @@ fn words(choice: &Choice) -> Vec<(&SheetRange, String)> {
     for target in &choice.targets {
         let role = match &target.role {
             TargetRole::Factor => "factor".to_owned(),
+            TargetRole::StreamFactor(stream) => format!("factor: {stream}"),
             TargetRole::Rates => "rates".to_owned(),
             TargetRole::PvByYear(None) => "pv".to_owned(),
             TargetRole::PvByYear(Some(stream)) => format!("pv: {stream}"),

@@ -43,6 +43,7 @@ pub(super) fn streams(context: &mut Context, split: &Split, group: &Group, axis:
                     residual: None,
                     tail: None,
                     growth: None,
+                    basis: None,
                 });
             }
         }
@@ -178,6 +179,7 @@ fn add_settings(context: &mut Context, split: &Split, group: &Group, stream: &mu
         );
     }
     stream.tail = about(Role::Tail).and_then(|named| settings::tail(context, named));
+    stream.basis = about(Role::Basis).and_then(|named| settings::basis(context, Some(named), None));
     stream.growth = about(Role::Growth).and_then(|named| prices::growth(context, named));
 }
 

@@ -1,6 +1,6 @@
 //! The sheet Discounting: offsets, forward rates and factors by year, and the present values.
 
-use super::AuditInput;
+use super::{AuditInput, block_basis};
 use crate::adjust;
 use crate::appraisal::{Label, StreamKind};
 use crate::formulas::{NO_ANNUAL, no_ratio, one, pv_expression, refer, sum_expression};
@@ -50,12 +50,15 @@ fn block(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, k: usize) {
     let block = &layout.blocks[k];
     let choice = &input.appraisal.choices[block.choice];
     let outcome = &input.outcomes[block.choice];
-    let options: Vec<&str> =
-        block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
+    let basis = block_basis(input, block);
+    let (factors, forward) = match block.stream.and_then(|s| outcome.streams[s].own.as_ref()) {
+        Some(own) => (&own.factors, &own.forward),
+        None => (&outcome.factors, &outcome.forward),
+    };
     let (first, last) = (block.column, block.column + 3);
-    let canonical = format!("Basis: {} ({})", outcome.basis.canonical(), options.join(", "));
+    let canonical = format!("Basis: {} ({})", basis.canonical(), layout.whose(k, input.appraisal));
     sheet.paragraph(BASIS_ROW, first, last, Style::Strong, canonical);
-    sheet.paragraph(WORDS_ROW, first, last, Style::Wrapped, outcome.basis.words());
+    sheet.paragraph(WORDS_ROW, first, last, Style::Wrapped, basis.words());
     let timing = format!("Base {}; {}.", outcome.base_words, outcome.timing_sentence.trim_end_matches('.'));
     sheet.paragraph(TIMING_ROW, first, last, Style::Wrapped, timing);
     for (i, heading) in ["Year", "Offset (years)", "Forward rate", "Factor"].iter().enumerate() {
@@ -66,10 +69,10 @@ fn block(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, k: usize) {
         let row = DATA_ROW + i as u32;
         put_label(sheet, input, label, (row, first));
         sheet.number(row, first + 1, Style::Offset, outcome.offsets[i]);
-        if let Some(rate) = outcome.forward[i] {
+        if let Some(rate) = forward[i] {
             sheet.number(row, first + 2, Style::Rate, rate);
         }
-        sheet.number(row, first + 3, Style::Factor, outcome.factors[i]);
+        sheet.number(row, first + 3, Style::Factor, factors[i]);
     }
 }
 

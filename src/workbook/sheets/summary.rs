@@ -6,7 +6,7 @@ use super::checks::{Checks, counts};
 use super::coverage::{Coverage, places};
 use super::discounting::table_ref;
 use super::lines::DIFFERS;
-use super::{AuditInput, charts::era_words, charts::thousands};
+use super::{AuditInput, block_basis, charts::era_words, charts::thousands};
 use crate::adjust;
 use crate::appraisal::{StreamKind, TargetRole};
 use crate::formulas::{ENDLESS_IRR, NO_IRR, no_ratio, one, refer};
@@ -158,14 +158,20 @@ impl Page {
     }
 
     fn basis(&mut self, input: &AuditInput<'_>, layout: &Layout) {
-        for block in &layout.blocks {
+        for (k, block) in layout.blocks.iter().enumerate() {
             let choice = &input.appraisal.choices[block.choice];
             let outcome = &input.outcomes[block.choice];
-            let names: Vec<&str> =
-                block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
-            self.section(&format!("Basis of {}", names.join(", ")));
-            self.pair("Basis", &format!("{} (from {})", outcome.basis.canonical(), choice.basis.from));
-            self.pair("In words, with its source", &outcome.basis.words());
+            let basis = block_basis(input, block);
+            let own = block.stream.and_then(|stream| choice.streams[stream].basis.as_ref());
+            let from = own.map_or(&choice.basis.from, |given| &given.from);
+            self.section(&format!("Basis of {}", layout.whose(k, input.appraisal)));
+            self.pair("Basis", &format!("{} (from {from})", basis.canonical()));
+            self.pair("In words, with its source", &basis.words());
+            if block.stream.is_some() {
+                // Base, timing and prices are its option's.
+                self.row += 1;
+                continue;
+            }
             self.pair("Base", &format!("{} (from {})", outcome.base_words, choice.base.from));
             self.pair("Timing", &outcome.timing_sentence);
             self.pair("Prices", outcome.prices.as_deref().unwrap_or(""));
@@ -342,7 +348,7 @@ impl Page {
         }
         self.row += 1;
         let factors: usize = input.outcomes.iter().map(|o| o.factors.len()).sum();
-        let multipliers = checks.multipliers;
+        let (multipliers, factors) = (checks.multipliers, factors + checks.own_factors);
         let in_lines = input.cells.iter().filter(|cell| is_factor(input, cell)).count();
         let cells = input.cells.len() - in_lines;
         let rest = checks.count.saturating_sub(factors + multipliers + cells + checks.settings);
@@ -401,8 +407,8 @@ fn rates_of_return(outcome: &ChoiceOutcome) -> String {
 /// Sign, unit, uplift, residual value and what follows the last year, a sentence for each stream that has any.
 fn adjustments(input: &AuditInput<'_>) -> Vec<String> {
     let mut texts = Vec::new();
-    for choice in &input.appraisal.choices {
-        for stream in &choice.streams {
+    for (c, choice) in input.appraisal.choices.iter().enumerate() {
+        for (s, stream) in choice.streams.iter().enumerate() {
             let mut parts = Vec::new();
             if stream.sign < 0.0 {
                 parts.push("entered with the opposite sign".to_owned());
@@ -418,6 +424,9 @@ fn adjustments(input: &AuditInput<'_>) -> Vec<String> {
             }
             if let Some(tail) = &stream.tail {
                 parts.push(format!("going on after the last year: {}", tail.value));
+            }
+            if let Some(own) = &input.outcomes[c].streams[s].own {
+                parts.push(format!("discounted on {}, a basis of its own", own.basis.canonical()));
             }
             if choice.prices.levels.is_some() || stream.growth.is_some() {
                 parts.push(adjust::multiplier_words(stream, choice));

@@ -41,6 +41,8 @@ pub struct Case {
     pub settings: bool,
     /// What the prices are, and by what flows are multiplied, in words: `inflation`, `index`, `growth`.
     pub prices: (&'static str, &'static str),
+    /// A basis of two streams' own, and whether the factors of one are filled.
+    pub own: (&'static str, bool),
 }
 
 const YEARS: u32 = 40;
@@ -50,13 +52,16 @@ const YEARS: u32 = 40;
 pub const CASES: &[Case] = {
     use Labels::*;
     const fn case(basis: &'static str, timing: &'static str, labels: Labels, across: bool, factors: bool) -> Case {
-        Case { basis, timing, labels, across, factors, past: 0, settings: false, prices: ("", "") }
+        Case { basis, timing, labels, across, factors, past: 0, settings: false, prices: ("", ""), own: ("", false) }
     }
     const fn with(case: Case, past: u32, settings: bool) -> Case {
         Case { past, settings, ..case }
     }
     const fn priced(case: Case, basis: &'static str, by: &'static str) -> Case {
         Case { prices: (basis, by), ..case }
+    }
+    const fn own(case: Case, basis: &'static str, factors: bool) -> Case {
+        Case { own: (basis, factors), ..case }
     }
     const BANDS: &str = "3.5% to 30, 3% to 75, 2.5% after";
     &[
@@ -92,6 +97,13 @@ pub const CASES: &[Case] = {
         case("gamma mean 4% sd 3%", "flows averaged", Offsets, true, false),
         case("0.5 of (1%), 0.5 of (7% continuous)", "flows averaged", Calendar, false, false),
         with(case("0.25 of (3% to 10, 2% after), 0.75 of (gamma mean 4% sd 2%)", "flows middle", Slash, true, true), 0, true),
+        // Streams on a basis of their own.
+        own(with(case("3.5%", "flows end", Calendar, true, true), 2, true), "1.5% to 30, 1% after", true),
+        own(with(case(BANDS, "flows averaged", Slash, false, false), 0, true), "2% continuous", false),
+        own(case("gamma mean 4% sd 3%", "flows middle", Numbers, true, false), "0.5 of (1%), 0.5 of (3%)", true),
+        own(priced(with(case("4%", "flows end", Dates, false, true), 0, true), "nominal", "inflation, growth"), "1%", false),
+        own(case("3% to 10.5, 2% after", "flows end", Calendar, true, true), "1%", true),
+        own(case("3%", "flows end", Calendar, true, false), "2% to 7.5, 1% after", true),
         // Without a second route: an edge within a year, and a table of factors.
         case("3% to 10.5, 2% after", "flows end", Calendar, true, true),
         case("factors-2026", "flows end", Numbers, false, true),
@@ -137,6 +149,11 @@ impl Case {
     /// The i-th level of prices.
     pub fn level(&self, i: u32) -> String {
         self.at(9, i).to_string()
+    }
+
+    /// The i-th factor of a stream on its own basis.
+    pub fn own_factor(&self, i: u32) -> String {
+        self.at(10, i).to_string()
     }
 
     fn values(&self, line: u32, value: impl Fn(u32) -> String) -> String {
@@ -198,6 +215,14 @@ impl Case {
         if !prices.is_empty() {
             cells += &format!("A10: 'Prices | '{prices}\nA11: 'Inflation | 0.025\nA12: 'Growth | 0.012\n");
             names += ", hence_price_basis B10";
+        }
+        let (own, own_factors) = self.own;
+        if !own.is_empty() {
+            cells += &format!("D10: 'Own basis | '{own}\n");
+            names += ", hence_basis_access E10, hence_basis_running E10";
+        }
+        if own_factors {
+            names += &format!(", hence_factor_access {}", self.range(10));
         }
         if by.contains("growth") {
             names += ", hence_growth_access B12, hence_growth_running B12";
