@@ -27,6 +27,7 @@ mod spec;
 mod sum;
 mod tail;
 mod timing;
+mod welfare;
 
 pub use basis::{Basis, CAUTION, PriceBasis};
 pub use calendar::{DayCount, offset_of_dates, parse_financial_year, years_after_base};
@@ -58,3 +59,7 @@ pub use spec::{Band, Compounding, Edge, GrowthState, HorizonRule, Persistence, S
 pub use sum::{ExactSum, dot, sum};
 pub use tail::Tail;
 pub use timing::{Position, TimedOffset, Timing, timing_sentence};
+pub use welfare::{
+    compensating_variation, compensation, compensation_rate, equally_distributed_equivalent,
+    equivalent_variation, marginal_utility, ramsey_rate_exact, utility, welfare, welfare_factors,
+};

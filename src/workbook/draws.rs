@@ -2,18 +2,19 @@
 
 use hence_core::{
     Band, Catalogue, Compounding, Distribution, Drawn, Draws, FirstPlace, Histogram, OptionFlows, Perpetual,
-    Quantity, RateDistribution, Spec, Spread, draw_values, histogram, spread,
+    PriceBasis, Quantity, RateDistribution, Spec, Spread, draw_values, histogram, spread,
 };
 
-use crate::appraisal::{Appraisal, Base, Choice};
+use crate::adjust::tail;
+use crate::appraisal::{Appraisal, Base, Choice, Stream};
 use crate::clock::{Clock, base_words};
 use crate::model::Workbook;
-use crate::outcome::ChoiceOutcome;
+use crate::outcome::{ChoiceOutcome, StreamOutcome};
 use crate::package::Package;
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result};
 use crate::resolve::{Options, resolve};
-use crate::valuation::{from_core, place_of, scaled, side, tail_base, value};
+use crate::valuation::{from_core, place_of, side, tail_base, value};
 
 /// What the run is told besides the workbook.
 #[derive(Clone, Debug, Default)]
@@ -269,6 +270,27 @@ fn warn(appraisal: &Appraisal, rate: &RateDistribution, problems: &mut Vec<Probl
         let hint = "a distribution, as in --growth \"normal mean 2% sd 0.5%\"";
         problems.push(Problem::warning("nothing-uncertain", Place::default(), message).hint(hint));
     }
+    for choice in &appraisal.choices {
+        for (stream, basis) in choice.streams.iter().filter_map(|s| s.basis.as_ref().map(|basis| (s, basis)))
+        {
+            let message = format!(
+                "`{}` is discounted on `{}`, not on the rate that is drawn: its present value is the same in every draw",
+                stream.name, basis.value
+            );
+            let problem = Problem::warning("not-drawn", place_of(&basis.at, &basis.from), message);
+            let problem =
+                problem.hint("leave its basis out, where its rate is as uncertain as that of the others");
+            if !problems.contains(&problem) {
+                problems.push(problem);
+            }
+        }
+        if choice.prices.valued() == Some(PriceBasis::Nominal) {
+            let message = "the flows are in money of the day, and a rate made of preference and the growth of real \
+                           consumption is a real one";
+            let problem = Problem::warning("prices-differ", Place::name(&choice.name), message);
+            problems.push(problem.hint("name an inflation rate or an index of prices hence_prices"));
+        }
+    }
     let bases: Vec<&Base> = appraisal.choices.iter().map(|choice| &choice.base.value).collect();
     if bases.windows(2).any(|pair| pair[0] != pair[1]) {
         let names: Vec<&str> = appraisal.choices.iter().map(|choice| choice.name.as_str()).collect();
@@ -285,34 +307,39 @@ fn list(appraisal: &Appraisal, choice: &Choice, outcome: &ChoiceOutcome, declare
     let clock = Clock::new(axis, &choice.base.value, outcome.timing)?;
     let (mut offsets, mut flows, mut perpetual) = (Vec::new(), Vec::new(), Vec::new());
     let mut add = |t: f64, flow: f64| {
-        for (at, share) in clock.moments(t) {
-            offsets.push(at);
-            flows.push(share * flow);
-        }
+        offsets.push(t);
+        flows.push(flow);
     };
     for (stream, valued) in choice.streams.iter().zip(&outcome.streams) {
         let (above, below) = side(stream.kind);
         let sign = above - below;
-        for (t, flow) in clock.offsets.iter().zip(&valued.flows) {
-            add(*t, sign * flow);
-        }
-        let (Some(tail), Some(&years), Some(&last)) =
-            (&stream.tail, clock.years.last(), scaled(stream).last())
-        else {
+        if valued.own.is_some() {
+            // Its rate is not the one that is drawn, so what it is worth at the base is the same in every draw.
+            add(0.0, sign * valued.pv);
             continue;
-        };
-        if tail.value.to.is_none() {
+        }
+        for (t, flow) in clock.offsets.iter().zip(&valued.flows) {
+            for (at, share) in clock.moments(*t) {
+                add(at, share * sign * flow);
+            }
+        }
+        let Some(tail) = tail(stream, choice)? else { continue };
+        let (Some(&years), Some(last)) = (clock.years.last(), last_flow(stream, valued)) else { continue };
+        if tail.to.is_none() {
             for (start, share) in clock.moments(clock.offset(years)) {
                 let flow = share * sign * last;
-                let (growth, every) = (tail.value.growth, tail.value.every);
-                perpetual.push(Perpetual { start, flow, growth, every });
+                perpetual.push(Perpetual { start, flow, growth: tail.growth, every: tail.every });
             }
             continue;
         }
         let base_year = tail_base(&axis.labels, &clock, choice);
-        let further = tail.value.flows(years, last, base_year, f64::from(i32::MAX));
-        for (years, flow) in further.map_err(|error| from_core(&error, place_of(&tail.at, &tail.from)))? {
-            add(clock.offset(years), sign * flow);
+        let further = tail.flows(years, last, base_year, f64::from(i32::MAX));
+        let place =
+            || stream.tail.as_ref().map_or_else(Place::default, |given| place_of(&given.at, &given.from));
+        for (years, flow) in further.map_err(|error| from_core(&error, place()))? {
+            for (at, share) in clock.moments(clock.offset(years)) {
+                add(at, share * sign * flow);
+            }
         }
     }
     let npv = (outcome.absolute.npv, outcome.increment.map(|increment| increment.npv));
@@ -325,6 +352,13 @@ fn list(appraisal: &Appraisal, choice: &Choice, outcome: &ChoiceOutcome, declare
         flows,
         perpetual,
     })
+}
+
+/// The last flow of a stream as valued, its residual value not counted: what a tail goes on from.
+fn last_flow(stream: &Stream, valued: &StreamOutcome) -> Option<f64> {
+    let multiplier = valued.multipliers.as_ref().and_then(|all| all.last()).copied().unwrap_or(1.0);
+    let scale = stream.sign * stream.unit * (1.0 + stream.uplift.value) * multiplier;
+    stream.raw.last().map(|last| last * scale)
 }
 
 impl Prepared {

@@ -18,6 +18,7 @@ mod schedules;
 mod sums;
 mod tails;
 mod timing;
+mod welfare;
 
 /// Property tests draw the same cases every time, and leave no files behind.
 fn repeatable() -> proptest::test_runner::Config {

@@ -16,7 +16,7 @@ mod book;
 mod curves;
 mod drawn;
 mod model;
-mod published;
+pub mod published;
 mod recalculated;
 mod rules;
 
