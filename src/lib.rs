@@ -13,6 +13,7 @@ mod check;
 mod curve;
 mod dd;
 mod derivation;
+mod draws;
 mod error;
 mod evidence;
 mod growth;
@@ -26,6 +27,7 @@ mod spec;
 mod sum;
 mod tail;
 mod timing;
+mod welfare;
 
 pub use basis::{Basis, CAUTION, PriceBasis};
 pub use calendar::{DayCount, offset_of_dates, parse_financial_year, years_after_base};
@@ -33,6 +35,10 @@ pub use catalogue::Catalogue;
 pub use curve::{Curve, Domain, Parts};
 pub use derivation::{
     Derivation, ElasticitySource, Figure, FigureKind, GrowthBy, GrowthSource, Hazard, RateParts, Stated,
+};
+pub use draws::{
+    Chance, Distribution, DrawSummary, Drawn, DrawnRate, Draws, FirstPlace, Histogram, OptionFlows,
+    Perpetual, Quantity, RateDistribution, Spread, draw_values, first_places, histogram, spread,
 };
 pub use error::{Error, ErrorKind, Result};
 pub use evidence::{
@@ -53,3 +59,7 @@ pub use spec::{Band, Compounding, Edge, GrowthState, HorizonRule, Persistence, S
 pub use sum::{ExactSum, dot, sum};
 pub use tail::Tail;
 pub use timing::{Position, TimedOffset, Timing, timing_sentence};
+pub use welfare::{
+    compensating_variation, compensation, compensation_rate, equally_distributed_equivalent,
+    equivalent_variation, marginal_utility, ramsey_rate_exact, utility, welfare, welfare_factors,
+};

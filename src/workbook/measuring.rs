@@ -3,7 +3,7 @@
 use std::collections::BTreeMap;
 
 use hence_core::{
-    Curve, Eras, IRR_INTERVAL, cost_per_effect, discounted_payback, dot, era_shares, internal_rates,
+    Curve, Eras, IRR_INTERVAL, Tail, cost_per_effect, discounted_payback, dot, era_shares, internal_rates,
     mean_time, npv_per_budget, sum,
 };
 
@@ -28,18 +28,16 @@ pub(crate) struct Further {
 impl Further {
     /// Lists the flows that follow, each in the stream's own direction.
     pub fn of(
-        stream: &Stream,
+        tail: &Tail,
         last_flow: f64,
         clock: &Clock,
         curve: &Curve,
         base_year: Option<i32>,
     ) -> hence_core::Result<Self> {
-        let (Some(tail), Some(&last)) = (&stream.tail, clock.years.last()) else {
-            return Ok(Further::default());
-        };
-        let endless = tail.value.to.is_none();
+        let Some(&last) = clock.years.last() else { return Ok(Further::default()) };
+        let endless = tail.to.is_none();
         let up_to = if endless { LISTED } else { f64::from(i32::MAX) };
-        let flows = tail.value.flows(last, last_flow, base_year, up_to)?;
+        let flows = tail.flows(last, last_flow, base_year, up_to)?;
         let valued = flows.into_iter().map(|(years, flow)| {
             let factor = curve.timed_factor(years, clock.timing)?;
             Ok((years, flow, factor))
@@ -63,7 +61,9 @@ impl Moments {
     pub fn of(choice: &Choice, outcome: &ChoiceOutcome, further: &[Further], clock: &Clock) -> Self {
         let mut moments = Moments { dated: Vec::new(), valued: Vec::new(), endless: false };
         for (i, (t, net)) in outcome.offsets.iter().zip(&outcome.net).enumerate() {
-            moments.add(clock, *t, *net, net * outcome.factors[i]);
+            let sides =
+                choice.streams.iter().map(|stream| side(stream.kind)).map(|(above, below)| above - below);
+            moments.add(clock, *t, *net, outcome.net_value(i, sides));
         }
         for (stream, further) in choice.streams.iter().zip(further) {
             let (above, below) = side(stream.kind);
@@ -128,15 +128,16 @@ pub(crate) fn measure_gross(outcome: &mut ChoiceOutcome, further: &[Further], cl
     let eras = Eras::default();
     let mut years: Vec<(f64, f64)> = Vec::new();
     let mut moments: Vec<(f64, f64)> = Vec::new();
-    for (stream, further) in outcome.streams.iter().zip(further) {
-        let own = outcome.offsets.iter().zip(&stream.flows).zip(&outcome.factors);
+    for (s, (stream, further)) in outcome.streams.iter().zip(further).enumerate() {
+        let curve = stream.own.as_ref().map_or(&outcome.curve, |own| &own.curve);
+        let own = outcome.offsets.iter().zip(&stream.flows).zip(outcome.factors_of(s));
         let own = own.map(|((t, flow), factor)| (*t, *flow, *factor));
         let later = further.flows.iter().map(|(years, flow, factor)| (clock.offset(*years), *flow, *factor));
         for (t, flow, factor) in own.chain(later) {
             years.push((t, flow * factor));
             for (at, share) in clock.moments(t) {
                 // Where an averaged flow's halves stand, each has the factor of its own moment.
-                let factor = if share == 1.0 { factor } else { outcome.curve.factor(at).unwrap_or(factor) };
+                let factor = if share == 1.0 { factor } else { curve.factor(at).unwrap_or(factor) };
                 moments.push((at, share * flow * factor));
             }
         }

@@ -9,7 +9,7 @@ pub const RELATIVE: f64 = 1e-9;
 pub fn of_cell(target: &Target, index: usize, expected: f64) -> f64 {
     let relative = RELATIVE * expected.abs();
     match target.role {
-        TargetRole::Factor | TargetRole::Rates => relative,
+        TargetRole::Factor | TargetRole::StreamFactor(_) | TargetRole::Rates => relative,
         _ => match target.formats.get(index).and_then(|f| f.as_deref()).and_then(half_unit) {
             Some(half) => half.max(relative),
             None => relative,

@@ -3,6 +3,7 @@
 mod books;
 mod check;
 mod curve;
+mod draws;
 mod errors;
 mod fill;
 mod help;

@@ -4,6 +4,7 @@ mod accuracy;
 mod basis;
 mod calendar;
 mod curves;
+mod draws;
 mod evidence;
 mod exact;
 mod growth;
@@ -17,6 +18,7 @@ mod schedules;
 mod sums;
 mod tails;
 mod timing;
+mod welfare;
 
 /// Property tests draw the same cases every time, and leave no files behind.
 fn repeatable() -> proptest::test_runner::Config {

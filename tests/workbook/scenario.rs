@@ -85,6 +85,8 @@ fn stream(
         uplift: given(0.0, None),
         residual: None,
         tail: None,
+        growth: None,
+        basis: None,
     }
 }
 
@@ -121,6 +123,7 @@ fn option(case: &Case, sheet: &str, axis: usize, strong: f64, full: bool) -> Cho
         },
         basis: given(case.basis.into(), None),
         timing: None,
+        prices: Prices::default(),
         axis,
         streams: vec![works, water, flood],
         effects: Vec::new(),
@@ -279,7 +282,15 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
             let for_ever = flows[flows.len() - 1] / 0.035 * factors[factors.len() - 1];
             let pv_tail = if s.tail.is_some() { for_ever } else { 0.0 };
             let pv = pv_by_year.iter().sum::<f64>() + pv_tail;
-            StreamOutcome { undiscounted: flows.iter().sum(), flows, pv_by_year, pv_tail, pv }
+            StreamOutcome {
+                undiscounted: flows.iter().sum(),
+                flows,
+                pv_by_year,
+                pv_tail,
+                pv,
+                multipliers: None,
+                own: None,
+            }
         })
         .collect();
     let net: Vec<f64> =
@@ -292,6 +303,7 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
         basis: basis.clone(),
         timing: case.timing,
         base_words: "2026".into(),
+        prices: None,
         timing_sentence: "a flow in 2026 has factor 1.0000, in 2027 0.9662".into(),
         forward: offsets.iter().map(|&t| (t > 0.0).then(|| curve.forward_rate(t.ceil()).unwrap())).collect(),
         service_years,

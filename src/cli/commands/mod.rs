@@ -2,6 +2,7 @@
 
 pub mod check;
 pub mod curve;
+pub mod draws;
 pub mod fill;
 pub mod names;
 pub mod rate;
