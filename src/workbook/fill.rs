@@ -417,7 +417,11 @@ fn foreign_sheets(book: &Workbook, previous: &[OwnSheet]) -> Vec<String> {
 }
 
 fn meta(package: &Package, outcomes: &[ChoiceOutcome], request: &FillRequest) -> Meta {
-    let bases: String = outcomes.iter().map(|outcome| outcome.basis.canonical() + "\n").collect();
+    let of = |outcome: &ChoiceOutcome| -> String {
+        let own = outcome.streams.iter().filter_map(|stream| stream.own.as_ref()).map(|own| &own.basis);
+        std::iter::once(&outcome.basis).chain(own).map(|basis| basis.canonical() + "\n").collect()
+    };
+    let bases: String = outcomes.iter().map(of).collect();
     Meta {
         input_name: package.file_name().to_owned(),
         input_sha256: sha256(package.bytes()),

@@ -3,12 +3,15 @@
 //! The only crate that knows a spreadsheet library. Numbers come from `hence_core`; what is written
 //! here is where they are read from, where they go, and the proof that comes with them.
 
+mod adjust;
 pub mod appraisal;
 pub mod check;
 mod clock;
 pub mod codes;
 mod companions;
 pub mod compare;
+pub mod dated;
+pub mod draws;
 pub mod fill;
 mod follow;
 pub mod formulas;

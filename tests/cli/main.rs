@@ -4,6 +4,7 @@ mod books;
 mod check;
 mod compare;
 mod curve;
+mod draws;
 mod errors;
 mod fill;
 mod help;
@@ -14,6 +15,7 @@ mod readme;
 mod schedules;
 mod start;
 mod targets;
+mod windows;
 
 use std::io::Write;
 use std::path::{Path, PathBuf};

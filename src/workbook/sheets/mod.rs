@@ -7,9 +7,11 @@ mod coverage;
 mod discounting;
 mod growth_route;
 mod lines;
+mod multipliers;
 mod nets;
 mod offsets;
 pub(crate) mod own;
+mod own_factors;
 mod rebuild;
 mod second_route;
 mod sensitivity;
@@ -18,12 +20,12 @@ mod summary;
 mod tails;
 mod targets;
 
-use hence_core::CAUTION;
+use hence_core::{Basis, CAUTION};
 
 use crate::appraisal::Appraisal;
 use crate::compare::Sensitivity;
 use crate::graft::ChartFinish;
-use crate::layout::Layout;
+use crate::layout::{Block, Layout};
 use crate::names_edit::NewName;
 use crate::outcome::ChoiceOutcome;
 use crate::problem::{Problem, Result};
@@ -182,6 +184,12 @@ pub struct Composed {
     pub verdict_at: String,
     /// All else that [`build`] gives, its bytes still empty.
     pub built: Built,
+}
+
+/// The basis whose factors a block holds.
+fn block_basis<'a>(input: &AuditInput<'a>, block: &Block) -> &'a Basis {
+    let outcome = &input.outcomes[block.choice];
+    block.stream.map_or(&outcome.basis, |stream| outcome.basis_of(stream))
 }
 
 /// Composes the sheet Discounting and the audit sheets.

@@ -16,10 +16,12 @@ pub(super) struct Nets {
 }
 
 impl Nets {
-    /// Those of an option; none where flows follow its last year, or where a year's formula would be too long.
+    /// Those of an option; none where flows follow its last year, where a stream has a basis of its own, or where a year's
+    /// formula would be too long.
     pub fn of(maker: &Maker<'_>, c: usize) -> Option<Self> {
         let choice = &maker.input.appraisal.choices[c];
-        if choice.streams.iter().any(|stream| stream.tail.is_some()) {
+        let tailed = choice.streams.iter().any(|stream| stream.tail.is_some());
+        if tailed || maker.input.outcomes[c].streams.iter().any(|stream| stream.own.is_some()) {
             return None;
         }
         let at = maker.sections[c];

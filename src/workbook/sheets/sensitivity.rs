@@ -151,7 +151,7 @@ impl Page<'_> {
                     values.push(x);
                 }
                 None => {
-                    self.sheet.text(self.row, c as u32 + 1, Style::Instead, "flows follow the last year");
+                    self.sheet.text(self.row, c as u32 + 1, Style::Instead, self.why_not(c));
                 }
             }
         }
@@ -160,6 +160,13 @@ impl Page<'_> {
         } else {
             self.row += 1;
         }
+    }
+
+    /// Why an option has no live value at a flat rate.
+    fn why_not(&self, c: usize) -> &'static str {
+        let options = std::iter::once(c).chain(self.input.appraisal.baseline);
+        let own = |c: usize| self.input.outcomes[c].streams.iter().any(|stream| stream.own.is_some());
+        if options.into_iter().any(own) { "a stream has its own basis" } else { "flows follow the last year" }
     }
 
     /// The net present value of an option, less that of another, at a flat rate: formula, number, and gross present value.
