@@ -40,5 +40,6 @@ pub mod suggest;
 pub mod tolerance;
 pub mod valuation;
 pub mod verify;
+mod welfare;
 pub mod writer;
 pub mod xml;

@@ -13,6 +13,7 @@ use crate::outcome::{ChoiceOutcome, OwnBasis, StreamOutcome, Totals};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::references::{Cell, Range, SheetRange};
 use crate::roles::key;
+use crate::welfare;
 
 /// Values every option; all problems are reported together.
 pub fn value(appraisal: &Appraisal, catalogue: &Catalogue) -> Result<(Vec<ChoiceOutcome>, Vec<Problem>)> {
@@ -45,6 +46,13 @@ pub fn value(appraisal: &Appraisal, catalogue: &Catalogue) -> Result<(Vec<Choice
             } else {
                 warn_baseline(outcome, &base, choice, base_choice, &mut problems);
             }
+        }
+    }
+    match welfare::exact_values(appraisal, &outcomes, &mut problems) {
+        Ok(values) => outcomes.iter_mut().zip(values).for_each(|(outcome, value)| outcome.exact = value),
+        Err(error) => {
+            problems.extend(error.problems().iter().cloned());
+            return Err(WorkbookError::from(problems));
         }
     }
     for (choice, outcome) in appraisal.choices.iter().zip(&outcomes) {
@@ -163,6 +171,7 @@ fn value_choice(
         push_once(problems, Problem::warning("basis-note", basis_place(), warning));
     }
     adjust::check_basis(choice, &basis, basis_place(), problems)?;
+    let elasticity = welfare::elasticity(choice, &basis, problems);
     let timing = timing_in_force(choice, &basis, problems);
     let clock = Clock::new(axis, &choice.base.value, timing)?;
     warn_timing(choice, timing, &basis, &clock, problems);
@@ -176,7 +185,8 @@ fn value_choice(
     for stream in &choice.streams {
         let own = own_basis(stream, (choice, axis), &clock, at, catalogue, problems)?;
         let (curve, factors) = own.as_ref().map_or((&curve, &factors), |own| (&own.curve, &own.factors));
-        let (mut outcome, later) = value_stream(stream, (choice, axis), &clock, curve, factors)?;
+        let weight = welfare::weight(stream, choice, elasticity.as_ref())?;
+        let (mut outcome, later) = value_stream(stream, (choice, axis, weight), &clock, curve, factors)?;
         outcome.own = own;
         streams.push(outcome);
         further.push(later);
@@ -193,6 +203,8 @@ fn value_choice(
         base_words: base_words(&choice.base.value),
         timing_sentence: sentence(axis, &clock, &factors),
         prices: adjust::words(choice),
+        elasticity,
+        exact: None,
         timing: clock.timing,
         offsets: clock.offsets.clone(),
         forward: clock.offsets.iter().map(|t| yearly_rate(&curve, *t)).collect(),
@@ -292,13 +304,14 @@ fn push_once(problems: &mut Vec<Problem>, problem: Problem) {
 
 fn value_stream(
     stream: &Stream,
-    (choice, axis): (&Choice, &Axis),
+    (choice, axis, weight): (&Choice, &Axis, Option<f64>),
     clock: &Clock,
     curve: &Curve,
     factors: &[f64],
 ) -> Result<(StreamOutcome, Further)> {
     let base_year = tail_base(&axis.labels, clock, choice);
-    let (multipliers, tail) = (adjust::multipliers(stream, choice, axis)?, adjust::tail(stream, choice)?);
+    let (multipliers, tail) =
+        (adjust::multipliers(stream, choice, axis, weight)?, adjust::tail(stream, choice)?);
     let multiplier = |i: usize| multipliers.as_ref().map_or(1.0, |all| all[i]);
     let scale = stream.sign * stream.unit * (1.0 + stream.uplift.value);
     // Adding zero turns -0 into 0, which no cell should show.
@@ -327,8 +340,16 @@ fn value_stream(
     };
     let pv_by_year: Vec<f64> = flows.iter().zip(factors).map(|(x, d)| x * d).collect();
     let pv = sum(&[dot(&flows, factors), pv_tail]);
-    let outcome =
-        StreamOutcome { undiscounted: sum(&flows), flows, pv_by_year, pv_tail, pv, multipliers, own: None };
+    let outcome = StreamOutcome {
+        undiscounted: sum(&flows),
+        flows,
+        pv_by_year,
+        pv_tail,
+        pv,
+        multipliers,
+        own: None,
+        weight,
+    };
     if outcome.pv.is_finite() && outcome.undiscounted.is_finite() {
         Ok((outcome, further))
     } else {
@@ -356,7 +377,10 @@ pub(crate) fn npv_on(
             terms.push((above - below) * valued.pv);
             continue;
         }
-        terms.push((above - below) * value_stream(stream, (choice, axis), &clock, curve, &factors)?.0.pv);
+        terms.push(
+            (above - below)
+                * value_stream(stream, (choice, axis, valued.weight), &clock, curve, &factors)?.0.pv,
+        );
     }
     Ok(sum(&terms))
 }

@@ -31,3 +31,4 @@ mod stream_basis;
 mod suggest;
 mod tools;
 mod verify;
+mod welfare;

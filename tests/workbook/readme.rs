@@ -10,7 +10,7 @@ use hence_workbook::codes::{CODES, Group};
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::model::Workbook;
 use hence_workbook::package::Package;
-use hence_workbook::roles::{ROLES, RoleInfo, Status, Takes, Way, parse_name};
+use hence_workbook::roles::{ROLES, RoleInfo, Takes, Way, parse_name};
 
 fn root() -> PathBuf {
     Path::new(env!("CARGO_MANIFEST_DIR")).join("../..")
@@ -37,13 +37,7 @@ fn role_row(info: &RoleInfo) -> String {
         Way::Out => "out",
         _ => "hence's",
     };
-    // The reason alone: what to do instead is in the message.
-    let why = |reason: &'static str| reason.split(':').next().unwrap_or(reason);
-    let what = match info.status {
-        Status::Supported => info.what.to_owned(),
-        Status::Later(reason) => format!("{} (*not in this version: {}*)", info.what, why(reason)),
-    };
-    format!("| {names} | {way} | {} |\n", cell(&what))
+    format!("| {names} | {way} | {} |\n", cell(info.what))
 }
 
 fn roles() -> String {

@@ -13,6 +13,7 @@ mod settings;
 mod streams;
 mod targets;
 mod texts;
+mod welfare;
 mod years;
 
 use std::collections::{BTreeMap, BTreeSet};

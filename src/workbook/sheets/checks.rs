@@ -33,6 +33,8 @@ pub(super) struct Checks {
     pub independent: usize,
     /// Of all checks, those of multipliers of flows.
     pub multipliers: usize,
+    /// Of all checks, those of values against consumption.
+    pub welfare: usize,
     /// Of all checks, those of factors on a stream's own basis.
     pub own_factors: usize,
 }
@@ -52,6 +54,8 @@ pub(super) struct Section {
     pub own_factors: u32,
     /// The first multiplier of flows.
     pub multipliers: u32,
+    /// The first value against consumption.
+    pub welfare: u32,
     /// The first target cell.
     pub cells: u32,
     /// The row after its end.
@@ -108,6 +112,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
         differing: lines.iter().filter(|(_, l)| !l.agrees()).map(|(_, l)| l.place.clone()).collect(),
         awaiting: lines.iter().filter(|(_, l)| l.awaits).count(),
         independent: lines.iter().filter(|(_, l)| l.rebuilt.is_some()).count(),
+        welfare: (0..make.sections.len()).map(|c| make.welfare_rows(c) as usize).sum(),
         own_factors: (0..make.sections.len()).map(|c| make.own_blocks_in(c).len() * make.rows(c)).sum(),
         multipliers: (0..make.sections.len()).map(|c| make.series_in(c).len() * make.rows(c)).sum(),
     }
@@ -164,7 +169,8 @@ impl<'a> Maker<'a> {
             let increments = if self.layout.rows[c].increment.is_some() { 3 } else { 0 };
             let own_factors = sums + 4 + increments;
             let multipliers = own_factors + (self.own_blocks_in(c).len() * self.rows(c)) as u32;
-            let start = multipliers + (self.series_in(c).len() * self.rows(c)) as u32;
+            let welfare = multipliers + (self.series_in(c).len() * self.rows(c)) as u32;
+            let start = welfare + self.welfare_rows(c);
             let end = start + cells.len() as u32;
             let top = row;
             self.sections.push(Section {
@@ -174,6 +180,7 @@ impl<'a> Maker<'a> {
                 sums,
                 own_factors,
                 multipliers,
+                welfare,
                 cells: start,
                 end,
             });
@@ -231,6 +238,8 @@ impl<'a> Maker<'a> {
         self.sums(c, lines);
         self.own_factor_lines(c, lines);
         self.multiplier_lines(c, lines);
+        self.consumption(sheet, c);
+        self.welfare_lines(c, lines);
         for (k, cell) in self.targets[c].iter().enumerate() {
             let row = at.cells + k as u32;
             lines.push((row, self.target(c, cell, row)));
@@ -482,7 +491,7 @@ pub(super) fn label_live(label: &Label, date1904: bool) -> (Cached, Style) {
     }
 }
 
-fn tolerance(gross: f64) -> f64 {
+pub(super) fn tolerance(gross: f64) -> f64 {
     // Never nothing: a stream of zeros must agree with itself.
     (crate::formulas::FACTOR_TOLERANCE * gross).max(1e-12)
 }

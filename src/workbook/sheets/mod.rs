@@ -16,6 +16,7 @@ mod settings;
 mod summary;
 mod tails;
 mod targets;
+mod welfare;
 
 use hence_core::{Basis, CAUTION};
 

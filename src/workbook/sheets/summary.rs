@@ -14,6 +14,7 @@ use crate::layout::{Column, Layout};
 use crate::outcome::ChoiceOutcome;
 use crate::patch::Cached;
 use crate::references::{Cell, Range, SheetRange};
+use crate::welfare;
 use crate::writer::{Sheet, Style};
 
 /// The verdict where everything agrees.
@@ -217,6 +218,11 @@ impl Page {
                 format!("{name}; ratio, annual equivalent, rates of return and payback use increments");
             self.pair("Baseline", &text);
         }
+        for (choice, outcome) in input.appraisal.choices.iter().zip(input.outcomes) {
+            if let Some(value) = &outcome.exact {
+                self.pair(&format!("{} against consumption", choice.name), &welfare::words(value));
+            }
+        }
         for (choice, beside) in input.appraisal.choices.iter().zip(input.companions) {
             if let Some(beside) = beside {
                 let t = &beside.totals;
@@ -348,19 +354,21 @@ impl Page {
         }
         self.row += 1;
         let factors: usize = input.outcomes.iter().map(|o| o.factors.len()).sum();
-        let (multipliers, factors) = (checks.multipliers, factors + checks.own_factors);
+        let (multipliers, welfare) = (checks.multipliers, checks.welfare);
+        let factors = factors + checks.own_factors;
         let in_lines = input.cells.iter().filter(|cell| is_factor(input, cell)).count();
         let cells = input.cells.len() - in_lines;
-        let rest = checks.count.saturating_sub(factors + multipliers + cells + checks.settings);
+        let rest = checks.count.saturating_sub(factors + multipliers + welfare + cells + checks.settings);
         for (label, number, allowed) in [
             ("Factors: second route, Discounting, filled cells", factors, "1e-9 relative"),
-            ("Multipliers of flows: prices and their growth", multipliers, "1e-9 relative"),
+            ("Multipliers of flows: prices, their growth, weights", multipliers, "1e-9 relative"),
+            ("Exact values against consumption", welfare, "1e-9 of the gross present value"),
             ("Present values and totals on Discounting", rest, "1e-9 of the gross present value"),
             ("What the workbook states: base, basis, timing and the like", checks.settings, "none"),
             ("Other filled or compared cells", cells, "half of the last displayed unit, or 1e-9"),
             ("Undiscounted totals of valued rows", coverage.valued, "1e-9 relative, or 0.000001"),
         ] {
-            if number == 0 && label.starts_with("Multipliers") {
+            if number == 0 && (label.starts_with("Multipliers") || label.starts_with("Exact")) {
                 continue;
             }
             self.sheet.text(self.row, 0, Style::Wrapped, label);
@@ -428,8 +436,8 @@ fn adjustments(input: &AuditInput<'_>) -> Vec<String> {
             if let Some(own) = &input.outcomes[c].streams[s].own {
                 parts.push(format!("discounted on {}, a basis of its own", own.basis.canonical()));
             }
-            if choice.prices.levels.is_some() || stream.growth.is_some() {
-                parts.push(adjust::multiplier_words(stream, choice));
+            if input.outcomes[c].streams[s].multipliers.is_some() {
+                parts.push(adjust::multiplier_words(stream, choice, &input.outcomes[c]));
             }
             if !parts.is_empty() {
                 texts.push(format!("{}, {}: {}.", choice.name, stream.name, parts.join("; ")));
