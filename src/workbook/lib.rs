@@ -5,6 +5,7 @@
 
 mod adjust;
 pub mod appraisal;
+mod baseline;
 pub mod check;
 mod clock;
 pub mod codes;

@@ -141,15 +141,16 @@ fn exact_value(
     let eta = elasticity.value;
     // No amount may be enough where utility has a ceiling, or a floor; the error without a place among the flows says so.
     let settled = |found: hence_core::Result<f64>| match found {
-        Ok(amount) => Ok(Some(amount)),
         Err(error) if error.kind() == ErrorKind::NoMeaning && error.index().is_none() => Ok(None),
-        Err(error) => Err(failed(&error)),
+        found => found.map(Some),
     };
     let factors = &outcome.factors;
     Ok(ExactValue {
         marginal: dot(&flows, factors),
-        equivalent: settled(equivalent_variation(&flows, &consumption, factors, base, eta))?,
-        compensating: settled(compensating_variation(&flows, &consumption, factors, base, base_flow, eta))?,
+        equivalent: settled(equivalent_variation(&flows, &consumption, factors, base, eta))
+            .map_err(|e| failed(&e))?,
+        compensating: settled(compensating_variation(&flows, &consumption, factors, base, base_flow, eta))
+            .map_err(|e| failed(&e))?,
         elasticity: elasticity.clone(),
         at_base,
         base,

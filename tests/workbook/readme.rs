@@ -92,7 +92,10 @@ fn the_tables_are_those_of_the_source() {
 fn the_tables_hold_every_row() {
     assert_eq!(roles().lines().count(), ROLES.len() + 2);
     assert!(roles().contains("| `cost_<stream>` | in | a stream of costs"));
-    assert!(roles().contains("`income_<stream>` | in | income of a group (*not in this version: welfare"));
+    assert!(
+        roles()
+            .contains("| `basis`, `basis_<stream>` | in | rate line, schedule id or a number; with a stream")
+    );
     for schedule in Catalogue::builtin().schedules() {
         assert!(schedules().contains(&format!("`{}`", schedule.id())), "{}", schedule.id());
     }

@@ -6,8 +6,7 @@ use super::checks::{Checks, counts};
 use super::coverage::{Coverage, places};
 use super::discounting::table_ref;
 use super::lines::DIFFERS;
-use super::{AuditInput, block_basis, charts::era_words, charts::thousands};
-use crate::adjust;
+use super::{AuditInput, adjustments, block_basis, charts::era_words, charts::thousands};
 use crate::appraisal::{StreamKind, TargetRole};
 use crate::formulas::{ENDLESS_IRR, NO_IRR, no_ratio, one, refer};
 use crate::layout::{Column, Layout};
@@ -54,7 +53,7 @@ pub(super) fn sheet(
     page.provenance(input);
     page.basis(input, layout);
     page.results(input, layout);
-    page.list("What was made of the flows as entered", &adjustments(input));
+    page.list("What was made of the flows as entered", &adjustments::words(input));
     page.checks(input, checks, coverage);
     page.warnings(input);
     page.list("What differs in the file by design", input.differs);
@@ -410,41 +409,6 @@ fn rates_of_return(outcome: &ChoiceOutcome) -> String {
     });
     let all: Vec<String> = found.chain(open).collect();
     if all.is_empty() { NO_IRR.to_owned() } else { all.join("; ") }
-}
-
-/// Sign, unit, uplift, residual value and what follows the last year, a sentence for each stream that has any.
-fn adjustments(input: &AuditInput<'_>) -> Vec<String> {
-    let mut texts = Vec::new();
-    for (c, choice) in input.appraisal.choices.iter().enumerate() {
-        for (s, stream) in choice.streams.iter().enumerate() {
-            let mut parts = Vec::new();
-            if stream.sign < 0.0 {
-                parts.push("entered with the opposite sign".to_owned());
-            }
-            if stream.unit != 1.0 {
-                parts.push(format!("in units of {}", stream.unit));
-            }
-            if stream.uplift.value != 0.0 {
-                parts.push(format!("raised by {}", hence_core::percent(stream.uplift.value)));
-            }
-            if let Some(residual) = &stream.residual {
-                parts.push(format!("with a value of {} left over in the last year", residual.value));
-            }
-            if let Some(tail) = &stream.tail {
-                parts.push(format!("going on after the last year: {}", tail.value));
-            }
-            if let Some(own) = &input.outcomes[c].streams[s].own {
-                parts.push(format!("discounted on {}, a basis of its own", own.basis.canonical()));
-            }
-            if input.outcomes[c].streams[s].multipliers.is_some() {
-                parts.push(adjust::multiplier_words(stream, choice, &input.outcomes[c]));
-            }
-            if !parts.is_empty() {
-                texts.push(format!("{}, {}: {}.", choice.name, stream.name, parts.join("; ")));
-            }
-        }
-    }
-    texts
 }
 
 fn is_factor(input: &AuditInput<'_>, cell: &super::TargetCell) -> bool {
