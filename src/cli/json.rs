@@ -3,7 +3,7 @@
 use std::collections::BTreeMap;
 
 use hence_workbook::problem::{Problem, Severity};
-use hence_workbook::report::{OptionReport, Report, Status};
+use hence_workbook::report::{Exact, OptionReport, Report, Status};
 use serde::Serialize;
 
 #[derive(Serialize)]
@@ -43,6 +43,10 @@ pub struct FilledOption {
     pub prices: Option<String>,
     #[serde(skip_serializing_if = "BTreeMap::is_empty")]
     pub stream_bases: BTreeMap<String, String>,
+    #[serde(skip_serializing_if = "BTreeMap::is_empty")]
+    pub weights: BTreeMap<String, f64>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub exact: Option<Exact>,
 }
 
 #[derive(Serialize)]
@@ -67,6 +71,8 @@ impl From<&OptionReport> for FilledOption {
             annual: totals.annual,
             prices: option.prices.clone(),
             stream_bases: option.stream_bases.iter().map(|(s, b, _)| (s.clone(), b.clone())).collect(),
+            weights: option.weights.iter().cloned().collect(),
+            exact: option.exact.as_ref().map(|(exact, _)| *exact),
         }
     }
 }

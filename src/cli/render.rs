@@ -262,6 +262,14 @@ fn details(option: &OptionReport) -> String {
     for (stream, basis, words) in &option.stream_bases {
         text.push_str(&format!("    {stream} on a basis of its own: {basis}. {words}\n"));
     }
+    if !option.weights.is_empty() {
+        let weights = option.weights.iter().map(|(stream, weight)| format!("{stream} {weight:.3}"));
+        let weights = weights.collect::<Vec<_>>().join(", ");
+        text.push_str(&format!("    Weighted by income: {weights}; totals are weighted\n"));
+    }
+    if let Some((_, words)) = &option.exact {
+        text.push_str(&format!("    Against consumption: {words}\n"));
+    }
     if let Some(companion) = &option.companion {
         text.push_str(&format!(
             "    Beside it, on {}: PV benefits {}, PV costs {}, NPV {}. {}\n",

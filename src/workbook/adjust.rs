@@ -1,10 +1,11 @@
-//! From flows as entered to flows as valued: money of the day made real, and prices that grow against others.
+//! From flows as entered to flows as valued: money of the day made real, prices that grow against others, weights.
 
 use chrono::Datelike;
 use hence_core::{Basis, PriceBasis, Tail, real_flows, real_flows_by_inflation};
 
 use crate::appraisal::{Axis, Choice, Label, Levels, Stream};
 use crate::clock::base_year;
+use crate::outcome::ChoiceOutcome;
 use crate::problem::{Place, Problem, Result};
 use crate::valuation::{from_core, place_of};
 
@@ -39,9 +40,16 @@ pub(crate) fn years_of_prices(axis: &Axis, choice: &Choice) -> Result<Vec<f64>> 
 }
 
 /// What multiplies each flow of a stream as entered, besides sign, unit and uplift; none where nothing does.
-pub(crate) fn multipliers(stream: &Stream, choice: &Choice, axis: &Axis) -> Result<Option<Vec<f64>>> {
-    if choice.prices.levels.is_none() && stream.growth.is_none() {
-        return Ok(None);
+pub(crate) fn multipliers(
+    stream: &Stream,
+    choice: &Choice,
+    axis: &Axis,
+    weight: Option<f64>,
+) -> Result<Option<Vec<f64>>> {
+    let priced = choice.prices.levels.is_some() || stream.growth.is_some();
+    let weights = weight.map(|weight| vec![weight; axis.labels.len()]);
+    if !priced {
+        return Ok(weights);
     }
     let years = years_of_prices(axis, choice)?;
     let ones = vec![1.0; years.len()];
@@ -63,6 +71,7 @@ pub(crate) fn multipliers(stream: &Stream, choice: &Choice, axis: &Axis) -> Resu
             *multiplier *= (1.0 + growth.value).powf(*n);
         }
     }
+    all.iter_mut().for_each(|multiplier| *multiplier *= weight.unwrap_or(1.0));
     Ok(Some(all))
 }
 
@@ -207,7 +216,7 @@ pub(crate) fn words(choice: &Choice) -> Option<String> {
 }
 
 /// What multiplies the flows of a stream, in words.
-pub(crate) fn multiplier_words(stream: &Stream, choice: &Choice) -> String {
+pub(crate) fn multiplier_words(stream: &Stream, choice: &Choice, outcome: &ChoiceOutcome) -> String {
     let mut parts = Vec::new();
     let year = words_of_year(choice);
     match choice.prices.levels.as_ref().map(|levels| &levels.value) {
@@ -224,6 +233,14 @@ pub(crate) fn multiplier_words(stream: &Stream, choice: &Choice) -> String {
         parts.push(format!(
             "relative price growth of {} a year: (1 + growth)^n, n years after {year}",
             hence_core::percent(growth.value)
+        ));
+    }
+    if let (Some(income), Some(reference), Some(elasticity)) =
+        (&stream.income, &choice.welfare.reference, &outcome.elasticity)
+    {
+        parts.push(format!(
+            "weight ({}/{})^{} of a group by its income, elasticity {} (from {})",
+            reference.value, income.value, elasticity.value, elasticity.value, elasticity.from
         ));
     }
     parts.join("; times ")

@@ -108,6 +108,8 @@ pub struct Stream {
     pub growth: Option<Given<f64>>,
     /// A basis of its own, from `basis_<stream>`; else it is discounted on the option's.
     pub basis: Option<Given<String>>,
+    /// Income of the group that it falls to, from `income_<stream>`.
+    pub income: Option<Given<f64>>,
 }
 
 /// The prices that flows are entered and valued in, as far as they are stated.
@@ -126,6 +128,30 @@ pub struct Declared {
     pub basis: PriceBasis,
     /// The year whose prices are meant; a financial year by its first calendar year.
     pub year: Option<i32>,
+}
+
+/// What welfare measures need, as far as it is stated.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Welfare {
+    /// Elasticity of marginal utility, from `elasticity`; else it is the basis's, where that states one.
+    pub elasticity: Option<Given<f64>>,
+    /// The income that counts once, from `income_reference`.
+    pub reference: Option<Given<f64>>,
+    /// Consumption without the project.
+    pub consumption: Option<Consumption>,
+}
+
+/// A path of consumption along the years.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Consumption {
+    /// Its cells.
+    pub at: SheetRange,
+    /// The defined name it was found by.
+    pub from: String,
+    /// The numbers in the cells, above 0.
+    pub raw: Vec<f64>,
+    /// Units of one, from `unit_consumption`.
+    pub unit: f64,
 }
 
 /// The level of prices over the years.
@@ -242,6 +268,8 @@ pub struct Choice {
     pub timing: Option<Given<Timing>>,
     /// The prices of its flows.
     pub prices: Prices,
+    /// What welfare measures need.
+    pub welfare: Welfare,
     /// Index into [`Appraisal::axes`].
     pub axis: usize,
     /// Its streams, shared ones included.

@@ -55,7 +55,9 @@ pub fn unknown(appraisal: &Appraisal, stale: &Stale, cells: &[TargetCell]) -> Ve
     let years = appraisal.axes.iter().map(|axis| &axis.at);
     let settings = appraisal.settings.iter().map(|setting| &setting.at);
     let levels = appraisal.choices.iter().filter_map(|choice| choice.prices.levels.as_ref()?.at.as_ref());
-    let follow = flows.chain(years).chain(settings).chain(levels).filter(|at| any(stale, at));
+    let paths = appraisal.choices.iter().filter_map(|choice| choice.welfare.consumption.as_ref());
+    let paths = paths.map(|path| &path.at);
+    let follow = flows.chain(years).chain(settings).chain(levels).chain(paths).filter(|at| any(stale, at));
     kept.chain(follow).cloned().collect()
 }
 

@@ -283,6 +283,9 @@ fn series(appraisal: &Appraisal, outcomes: &[ChoiceOutcome], first: u32) -> Vec<
                     && from.base == choice.base
                     && from.prices == choice.prices
                     && from.streams[other].growth == stream.growth
+                    && from.streams[other].income == stream.income
+                    && from.welfare.reference == choice.welfare.reference
+                    && outcomes[other_choice].elasticity == outcomes[c].elasticity
                     && outcomes[other_choice].streams[other].multipliers.as_ref() == Some(values)
             };
             match all.iter_mut().find(same) {

@@ -5,6 +5,7 @@
 
 mod adjust;
 pub mod appraisal;
+mod baseline;
 pub mod check;
 mod clock;
 pub mod codes;
@@ -43,5 +44,6 @@ pub mod suggest;
 pub mod tolerance;
 pub mod valuation;
 pub mod verify;
+mod welfare;
 pub mod writer;
 pub mod xml;

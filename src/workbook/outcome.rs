@@ -1,5 +1,6 @@
 //! The numbers of an appraisal under its basis: factors, present values and measures, by option.
 
+use crate::appraisal::Given;
 use hence_core::{Basis, Curve, Payback, Timing, sum};
 
 use crate::dated::Flows;
@@ -21,6 +22,8 @@ pub struct StreamOutcome {
     pub multipliers: Option<Vec<f64>>,
     /// What it was discounted on, where that is not the option's basis.
     pub own: Option<OwnBasis>,
+    /// What a unit of it counts, by the income of its group; part of the multipliers.
+    pub weight: Option<f64>,
 }
 
 /// The basis of a stream that has its own, at the option's base, length and timing.
@@ -70,6 +73,8 @@ pub struct ChoiceOutcome {
     pub timing_sentence: String,
     /// The prices of the flows in words, where the workbook says anything of them.
     pub prices: Option<String>,
+    /// The elasticity of marginal utility, where the workbook or the basis states one.
+    pub elasticity: Option<Given<f64>>,
     /// Offset of each year's flow (with an averaged position: of the year's end).
     pub offsets: Vec<f64>,
     /// Factor of each year.
@@ -103,6 +108,8 @@ pub struct ChoiceOutcome {
     pub mean_time: Option<f64>,
     /// Share of gross PV by era, what follows the last year included.
     pub era_shares: Vec<f64>,
+    /// The exact value of its flows, where a path of consumption is given; over the baseline where there is one.
+    pub exact: Option<ExactValue>,
     /// NPV per unit of the constrained cost.
     pub npv_per_budget: Option<f64>,
     /// PV of costs (over the baseline where there is one) per unit of each effect, undiscounted and discounted.
@@ -132,5 +139,66 @@ impl ChoiceOutcome {
     /// The totals that rank, ratio and NPV use: the increment where there is a baseline.
     pub fn totals(&self) -> &Totals {
         self.increment.as_ref().unwrap_or(&self.absolute)
+    }
+}
+
+/// What flows that are not small against consumption are worth at the base.
+#[derive(Clone, Debug, PartialEq)]
+pub struct ExactValue {
+    /// The sum of flows times factors, which is right for small flows.
+    pub marginal: f64,
+    /// The amount at the base that changes welfare as much as the flows do; none where no amount does.
+    pub equivalent: Option<f64>,
+    /// The amount which, taken at the base beside the flows, leaves welfare as it was; none where no amount does.
+    pub compensating: Option<f64>,
+    /// Elasticity of marginal utility.
+    pub elasticity: Given<f64>,
+    /// Where the base stands among the years.
+    pub at_base: AtBase,
+    /// Consumption at the base.
+    pub base: f64,
+    /// The flow at the base itself.
+    pub base_flow: f64,
+    /// The net flow of each year that is valued.
+    pub flows: Vec<f64>,
+    /// Consumption of each year without the project, in units of one.
+    pub consumption: Vec<f64>,
+    /// Flows go on after the last year, and are not part of these values.
+    pub tail: bool,
+}
+
+impl ExactValue {
+    /// How far the marginal value is off, as a share of the equivalent one; none where there is no such amount.
+    pub fn off(&self) -> Option<f64> {
+        let exact = self.equivalent?;
+        Some(if self.marginal == exact { 0.0 } else { (self.marginal - exact) / exact.abs() })
+    }
+}
+
+/// Where the base stands among the years: at one of them, or between two.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct AtBase {
+    /// The year at or before the base.
+    pub before: usize,
+    /// How far the base is from it to the next year, 0 to below 1.
+    pub share: f64,
+}
+
+impl AtBase {
+    /// Finds it; none where the base lies outside the years.
+    pub(crate) fn find(years: &[f64]) -> Option<AtBase> {
+        let before = years.iter().rposition(|n| *n <= 0.0)?;
+        let share = match (years[before], years.get(before + 1)) {
+            (0.0, _) => 0.0,
+            (from, Some(to)) => -from / (to - from),
+            (_, None) => return None,
+        };
+        Some(AtBase { before, share })
+    }
+
+    /// The consumption at the base, log-linear between two years.
+    pub(crate) fn of(self, consumption: &[f64]) -> f64 {
+        let from = consumption[self.before];
+        if self.share == 0.0 { from } else { from * (consumption[self.before + 1] / from).powf(self.share) }
     }
 }

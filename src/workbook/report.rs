@@ -5,6 +5,7 @@ use hence_core::Payback;
 use crate::appraisal::{Appraisal, StreamKind};
 use crate::outcome::{ChoiceOutcome, Totals};
 use crate::problem::{Problem, Severity};
+use crate::welfare;
 
 /// How a run on one workbook ended.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, serde::Serialize)]
@@ -27,6 +28,19 @@ pub struct Companion {
     pub words: String,
     /// Totals under it (over the baseline where there is one).
     pub totals: Totals,
+}
+
+/// What flows that are not small against consumption are worth at the base.
+#[derive(Clone, Copy, Debug, PartialEq, serde::Serialize)]
+pub struct Exact {
+    /// The amount that changes welfare as much; none where no amount does.
+    pub equivalent: Option<f64>,
+    /// The amount that undoes the change; none where no amount does.
+    pub compensating: Option<f64>,
+    /// By the marginal method.
+    pub marginal: f64,
+    /// Elasticity of marginal utility.
+    pub elasticity: f64,
 }
 
 /// What one option comes to.
@@ -72,6 +86,10 @@ pub struct OptionReport {
     pub npv_per_budget: Option<f64>,
     /// Streams that have a basis of their own: name, the basis and in words.
     pub stream_bases: Vec<(String, String, String)>,
+    /// Streams whose flows are weighted by the income of their group: name and weight.
+    pub weights: Vec<(String, f64)>,
+    /// The exact value where a path of consumption is given, and in words.
+    pub exact: Option<(Exact, String)>,
     /// Effects by name: cost per unit undiscounted, cost per unit discounted.
     pub effects: Vec<(String, Option<f64>, Option<f64>)>,
     /// The same under the companion schedule.
@@ -157,6 +175,21 @@ pub(crate) fn option_reports(
                     Some((stream.name.clone(), basis.canonical(), basis.words()))
                 })
                 .collect(),
+            weights: choice
+                .streams
+                .iter()
+                .zip(&outcome.streams)
+                .filter_map(|(stream, valued)| Some((stream.name.clone(), valued.weight?)))
+                .collect(),
+            exact: outcome.exact.as_ref().map(|value| {
+                let exact = Exact {
+                    equivalent: value.equivalent,
+                    compensating: value.compensating,
+                    marginal: value.marginal,
+                    elasticity: value.elasticity.value,
+                };
+                (exact, welfare::words(value))
+            }),
             effects: choice
                 .effects
                 .iter()

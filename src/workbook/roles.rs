@@ -58,6 +58,8 @@ pub enum Role {
     Growth,
     /// A path of consumption.
     Consumption,
+    /// Elasticity of marginal utility.
+    Elasticity,
     /// Income of a group.
     Income,
     /// A factor for each year.
@@ -110,15 +112,6 @@ pub enum Takes {
     Stream,
 }
 
-/// Whether a role is understood by this version.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
-pub enum Status {
-    /// Read or filled.
-    Supported,
-    /// Refused by name, with what to do instead.
-    Later(&'static str),
-}
-
 /// One row of the table of roles.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub struct RoleInfo {
@@ -132,20 +125,11 @@ pub struct RoleInfo {
     pub takes: Takes,
     /// What it is, in one line.
     pub what: &'static str,
-    /// Whether this version understands it.
-    pub status: Status,
 }
 
 const fn row(role: Role, word: &'static str, way: Way, takes: Takes, what: &'static str) -> RoleInfo {
-    RoleInfo { role, word, way, takes, what, status: Status::Supported }
+    RoleInfo { role, word, way, takes, what }
 }
-
-const fn but(info: RoleInfo, status: Status) -> RoleInfo {
-    RoleInfo { status, ..info }
-}
-
-const WELFARE_LATER: Status =
-    Status::Later("welfare measures are not computed from workbooks yet: leave this name out");
 
 /// The one table of roles.
 pub const ROLES: &[RoleInfo] = &[
@@ -238,11 +222,27 @@ pub const ROLES: &[RoleInfo] = &[
         Takes::Stream,
         "growth of a stream's price against others, a rate a year from the price base",
     ),
-    but(
-        row(Role::Consumption, "consumption", Way::In, Takes::NoStream, "a path of consumption per head"),
-        WELFARE_LATER,
+    row(
+        Role::Consumption,
+        "consumption",
+        Way::In,
+        Takes::NoStream,
+        "consumption along the years without the project, in the unit and prices of the flows",
     ),
-    but(row(Role::Income, "income", Way::In, Takes::Stream, "income of a group"), WELFARE_LATER),
+    row(
+        Role::Elasticity,
+        "elasticity",
+        Way::In,
+        Takes::NoStream,
+        "elasticity of marginal utility for consumption and incomes, where the basis states none",
+    ),
+    row(
+        Role::Income,
+        "income",
+        Way::In,
+        Takes::Stream,
+        "income of the group that the stream of that name falls to, for an equity weight; `income_reference` counts once",
+    ),
     row(
         Role::Factor,
         "factor",

@@ -7,13 +7,14 @@ use hence_core::{
 
 use crate::adjust;
 use crate::appraisal::{Appraisal, Axis, COMMAND_LINE, Choice, Label, Stream, StreamKind};
+use crate::baseline::{increment, warn_baseline, warn_unequal_lives};
 use crate::clock::{Clock, base_words, base_year, label_words, sentence};
 use crate::dated;
 use crate::measuring::{Further, Moments, measure_gross, measure_net, measure_units};
 use crate::outcome::{ChoiceOutcome, OwnBasis, StreamOutcome, Totals};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::references::{Cell, Range, SheetRange};
-use crate::roles::key;
+use crate::welfare;
 
 /// Values every option; all problems are reported together.
 pub fn value(appraisal: &Appraisal, catalogue: &Catalogue) -> Result<(Vec<ChoiceOutcome>, Vec<Problem>)> {
@@ -46,6 +47,13 @@ pub fn value(appraisal: &Appraisal, catalogue: &Catalogue) -> Result<(Vec<Choice
             } else {
                 warn_baseline(outcome, &base, choice, base_choice, &mut problems);
             }
+        }
+    }
+    match welfare::exact_values(appraisal, &outcomes, &mut problems) {
+        Ok(values) => outcomes.iter_mut().zip(values).for_each(|(outcome, value)| outcome.exact = value),
+        Err(error) => {
+            problems.extend(error.problems().iter().cloned());
+            return Err(WorkbookError::from(problems));
         }
     }
     for (choice, outcome) in appraisal.choices.iter().zip(&outcomes) {
@@ -164,6 +172,7 @@ fn value_choice(
         push_once(problems, Problem::warning("basis-note", basis_place(), warning));
     }
     adjust::check_basis(choice, &basis, basis_place(), problems)?;
+    let elasticity = welfare::elasticity(choice, &basis, problems);
     let timing = timing_in_force(choice, &basis, problems);
     let clock = Clock::new(axis, &choice.base.value, timing)?;
     warn_timing(choice, timing, &basis, &clock, problems);
@@ -177,7 +186,8 @@ fn value_choice(
     for stream in &choice.streams {
         let own = own_basis(stream, (choice, axis), &clock, at, catalogue, problems)?;
         let (curve, factors) = own.as_ref().map_or((&curve, &factors), |own| (&own.curve, &own.factors));
-        let (mut outcome, later) = value_stream(stream, (choice, axis), &clock, curve, factors)?;
+        let weight = welfare::weight(stream, choice, elasticity.as_ref())?;
+        let (mut outcome, later) = value_stream(stream, (choice, axis, weight), &clock, curve, factors)?;
         outcome.own = own;
         streams.push(outcome);
         further.push(later);
@@ -194,6 +204,8 @@ fn value_choice(
         base_words: base_words(&choice.base.value),
         timing_sentence: sentence(axis, &clock, &factors),
         prices: adjust::words(choice),
+        elasticity,
+        exact: None,
         timing: clock.timing,
         offsets: clock.offsets.clone(),
         forward: clock.offsets.iter().map(|t| yearly_rate(&curve, *t)).collect(),
@@ -286,7 +298,7 @@ pub(crate) fn tail_base(labels: &[Label], clock: &Clock, choice: &Choice) -> Opt
     }
 }
 
-fn push_once(problems: &mut Vec<Problem>, problem: Problem) {
+pub(crate) fn push_once(problems: &mut Vec<Problem>, problem: Problem) {
     if !problems.contains(&problem) {
         problems.push(problem);
     }
@@ -294,13 +306,14 @@ fn push_once(problems: &mut Vec<Problem>, problem: Problem) {
 
 fn value_stream(
     stream: &Stream,
-    (choice, axis): (&Choice, &Axis),
+    (choice, axis, weight): (&Choice, &Axis, Option<f64>),
     clock: &Clock,
     curve: &Curve,
     factors: &[f64],
 ) -> Result<(StreamOutcome, Further)> {
     let base_year = tail_base(&axis.labels, clock, choice);
-    let (multipliers, tail) = (adjust::multipliers(stream, choice, axis)?, adjust::tail(stream, choice)?);
+    let (multipliers, tail) =
+        (adjust::multipliers(stream, choice, axis, weight)?, adjust::tail(stream, choice)?);
     let multiplier = |i: usize| multipliers.as_ref().map_or(1.0, |all| all[i]);
     let scale = stream.sign * stream.unit * (1.0 + stream.uplift.value);
     // Adding zero turns -0 into 0, which no cell should show.
@@ -329,8 +342,16 @@ fn value_stream(
     };
     let pv_by_year: Vec<f64> = flows.iter().zip(factors).map(|(x, d)| x * d).collect();
     let pv = sum(&[dot(&flows, factors), pv_tail]);
-    let outcome =
-        StreamOutcome { undiscounted: sum(&flows), flows, pv_by_year, pv_tail, pv, multipliers, own: None };
+    let outcome = StreamOutcome {
+        undiscounted: sum(&flows),
+        flows,
+        pv_by_year,
+        pv_tail,
+        pv,
+        multipliers,
+        own: None,
+        weight,
+    };
     if outcome.pv.is_finite() && outcome.undiscounted.is_finite() {
         Ok((outcome, further))
     } else {
@@ -358,7 +379,10 @@ pub(crate) fn npv_on(
             terms.push((above - below) * valued.pv);
             continue;
         }
-        terms.push((above - below) * value_stream(stream, (choice, axis), &clock, curve, &factors)?.0.pv);
+        terms.push(
+            (above - below)
+                * value_stream(stream, (choice, axis, valued.weight), &clock, curve, &factors)?.0.pv,
+        );
     }
     Ok(sum(&terms))
 }
@@ -398,7 +422,7 @@ fn totals(choice: &Choice, streams: &[StreamOutcome], annuity: f64) -> Totals {
 }
 
 /// NPV, ratio and annual equivalent from the present values.
-fn finish_totals(mut totals: Totals, annuity: f64) -> Totals {
+pub(crate) fn finish_totals(mut totals: Totals, annuity: f64) -> Totals {
     totals.npv = totals.pv_benefits - totals.pv_costs;
     totals.ratio = benefit_cost_ratio(totals.pv_benefits, totals.pv_costs).ok();
     totals.annual = (annuity > 0.0).then(|| totals.npv / annuity);
@@ -420,93 +444,4 @@ fn net_flows(choice: &Choice, streams: &[StreamOutcome], years: usize) -> Vec<f6
             sum(&terms) + 0.0
         })
         .collect()
-}
-
-/// The totals over the baseline.
-fn increment(outcome: &ChoiceOutcome, base: &ChoiceOutcome) -> Totals {
-    let (own, base) = (&outcome.absolute, &base.absolute);
-    let less = Totals {
-        benefits: own.benefits - base.benefits,
-        costs: own.costs - base.costs,
-        pv_benefits: own.pv_benefits - base.pv_benefits,
-        pv_costs: own.pv_costs - base.pv_costs,
-        ..Totals::default()
-    };
-    finish_totals(less, outcome.annuity)
-}
-
-/// What keeps an increment over the baseline from having a plain meaning.
-fn warn_baseline(
-    outcome: &ChoiceOutcome,
-    base: &ChoiceOutcome,
-    choice: &Choice,
-    base_choice: &Choice,
-    problems: &mut Vec<Problem>,
-) {
-    if outcome.basis != base.basis || outcome.base_words != base.base_words || outcome.timing != base.timing {
-        problems.push(
-            Problem::warning(
-                "baseline-basis",
-                Place::name(&choice.name),
-                format!("its basis, base or timing is not that of the baseline `{}`", base_choice.name),
-            )
-            .hint("value both on one basis from one base year, or the increment has no meaning"),
-        );
-    }
-    for (stream, valued) in choice.streams.iter().zip(&outcome.streams) {
-        let twin = base_choice.streams.iter().position(|other| key(&other.name) == key(&stream.name));
-        let Some(twin) = twin.filter(|s| base.streams[*s].own != valued.own) else { continue };
-        let message = format!(
-            "its stream `{}` is discounted on {}, in the baseline `{}` on {}",
-            stream.name,
-            valued.own.as_ref().map_or(&outcome.basis, |own| &own.basis).canonical(),
-            base_choice.name,
-            base.basis_of(twin).canonical()
-        );
-        push_once(
-            problems,
-            Problem::warning("baseline-basis", Place::name(&choice.name), message)
-                .hint("discount a stream on one basis in every option"),
-        );
-    }
-    // A damage that one side does not state would count as wholly avoided, or wholly new.
-    for (has, lacks) in [(base_choice, choice), (choice, base_choice)] {
-        let damages = |choice: &Choice| {
-            let damages = choice.streams.iter().filter(|s| s.kind == StreamKind::Damage);
-            damages.map(|s| (key(&s.name), s.name.clone())).collect::<Vec<_>>()
-        };
-        let known = damages(lacks);
-        for (id, name) in damages(has).into_iter().filter(|(id, _)| known.iter().all(|k| k.0 != *id)) {
-            let message = format!(
-                "`{}` has the damage `{name}`, `{}` has no damage of that name: it counts as 0 there",
-                has.name, lacks.name
-            );
-            push_once(
-                problems,
-                Problem::warning("baseline-damage", Place::name(&choice.name), message)
-                    .hint(format!("name the cells hence_damage_{id} of both, zeros included")),
-            );
-        }
-    }
-}
-
-/// Annual equivalents over unequal lives are not comparable under a declining curve.
-fn warn_unequal_lives(appraisal: &Appraisal, outcomes: &[ChoiceOutcome], problems: &mut Vec<Problem>) {
-    let lives: std::collections::BTreeSet<u32> = outcomes.iter().map(|o| o.service_years).collect();
-    let declining = outcomes.iter().any(|o| {
-        let end = f64::from(o.service_years);
-        let rate = |t: f64| o.curve.mean_rate(t).unwrap_or(0.0);
-        (rate(1.0) - rate(end)).abs() > 1e-9
-    });
-    if lives.len() > 1 && declining {
-        let names: Vec<&str> = appraisal.choices.iter().map(|c| c.name.as_str()).collect();
-        problems.push(
-            Problem::warning(
-                "unequal-lives",
-                Place::name(&names.join(", ")),
-                "annual equivalents over unequal lives are not comparable under a declining curve",
-            )
-            .hint("appraise every option over the same years"),
-        );
-    }
 }

@@ -3,6 +3,7 @@
 use crate::books::{cell, holds, number, plan, typed};
 use crate::{code, copy_of, run, stderr, stdout};
 use hence_workbook::reading::Value;
+use hence_workbook::references::Cell;
 
 fn json(output: &std::process::Output) -> serde_json::Value {
     serde_json::from_str(&stdout(output)).expect("one JSON document")
@@ -81,6 +82,52 @@ fn the_prices_of_the_flows_are_reported() {
     // Where nothing is said of prices, nothing is reported.
     let output = run(&["fill", book.arg(), "--force"]);
     assert!(!stdout(&output).contains("Prices"), "{}", stdout(&output));
+}
+
+/// Anglers on 1%, with half the reference income at an elasticity of 1: 1200 a year in 2027 and 2028.
+#[test]
+fn a_stream_of_its_own_basis_and_weight_is_reported() {
+    let book = plan(&[("A18", "Anglers"), ("B60", "0.01"), ("B61", "20000"), ("B62", "40000"), ("B63", "1")]);
+    let mut args = vec!["fill", book.arg(), "--json"];
+    for role in [
+        "basis_anglers=Appraisal!B60",
+        "income_anglers=Appraisal!B61",
+        "income_reference=Appraisal!B62",
+        "elasticity=Appraisal!B63",
+    ] {
+        args.extend(["--role", role]);
+    }
+    let output = run(&args);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    let option = &json(&output)["books"][0]["options"][0];
+    assert_eq!(option["stream_bases"]["Anglers"], "1%");
+    assert_eq!(option["weights"]["Anglers"], 2.0);
+    assert!(close(option["pv_benefits"].as_f64().unwrap(), 2.0 * by_hand(0.01).0), "{option}");
+    args.retain(|arg| *arg != "--json");
+    let text = stdout(&run(&[&args[..], &["--force"]].concat()));
+    assert!(text.contains("Anglers on a basis of its own: 1%"), "{text}");
+    assert!(text.contains("Weighted by income: Anglers 2.000"), "{text}");
+}
+
+/// Consumption of 2000 a year at an elasticity of 1: the exact amount is 2000 (exp(sum of D ln((c + x)/c)) - 1).
+#[test]
+fn a_project_that_is_not_small_is_told_with_its_exact_value() {
+    let cells: Vec<String> = (2..63).map(|i| Cell { row: 61, col: i - 1 }.to_string()).collect();
+    let mut more: Vec<(&str, &str)> = cells.iter().map(|cell| (cell.as_str(), "2000")).collect();
+    more.push(("B60", "1"));
+    let book = plan(&more);
+    let path = format!("consumption=Appraisal!B62:{}", cells[60]);
+    let output = run(&["fill", book.arg(), "--json", "--role", &path, "--role", "elasticity=Appraisal!B60"]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    let document = json(&output);
+    let found = &document["books"][0];
+    let gain = 0.5_f64.ln() + 1.3_f64.ln() / 1.035 + 1.3_f64.ln() / 1.035_f64.powi(2);
+    let exact = &found["options"][0]["exact"];
+    assert!(close(exact["equivalent"].as_f64().unwrap(), 2000.0 * (gain.exp() - 1.0)), "{exact}");
+    assert!(close(exact["marginal"].as_f64().unwrap(), by_hand(0.035).0 - 1000.0), "{exact}");
+    let codes: Vec<&str> =
+        found["problems"].as_array().unwrap().iter().filter_map(|p| p["code"].as_str()).collect();
+    assert!(codes.contains(&"not-marginal"), "{codes:?}");
 }
 
 #[test]

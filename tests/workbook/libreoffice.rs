@@ -275,6 +275,24 @@ fn turns() -> Vec<Turn> {
         turn(&case_name(owned), "Appraisal", &CASES[owned].own_factor(7), CellWrite::Number(0.5)),
         turn(&case_name(owned), "Discounting", "I12", CellWrite::Number(0.5)),
     ]);
+    let faring = |by: &str| CASES.iter().position(|case| case.welfare.0 == by).expect("a case of welfare");
+    let (weighted, consuming) = (faring("income"), faring("consumption"));
+    turns.extend([
+        turn(&case_name(weighted), "Appraisal", "E11", CellWrite::Number(1.2)),
+        turn(&case_name(weighted), "Appraisal", "E12", CellWrite::Number(17_000.0)),
+        turn(&case_name(weighted), "Appraisal", "F12", CellWrite::Number(31_000.0)),
+        // No value in the workbook rests on consumption: the audit sheets alone tell.
+        Turn {
+            check: Check::Never,
+            ..turn(
+                &case_name(consuming),
+                "Appraisal",
+                &CASES[consuming].consumption(3),
+                CellWrite::Number(900.0),
+            )
+        },
+        Turn { check: Check::Never, ..turn(OPTIONS, "Inputs", "B7", CellWrite::Number(3.0)) },
+    ]);
     let settings = CASES.iter().position(|case| case.settings).expect("a case with settings");
     for (cell, write, check) in [
         ("B4", CellWrite::Text("costs positive".into()), Check::After),

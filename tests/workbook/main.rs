@@ -33,3 +33,4 @@ mod stream_basis;
 mod suggest;
 mod tools;
 mod verify;
+mod welfare;

@@ -10,7 +10,7 @@ use hence_workbook::codes::{CODES, Group};
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::model::Workbook;
 use hence_workbook::package::Package;
-use hence_workbook::roles::{ROLES, RoleInfo, Status, Takes, Way, parse_name};
+use hence_workbook::roles::{ROLES, RoleInfo, Takes, Way, parse_name};
 
 fn root() -> PathBuf {
     Path::new(env!("CARGO_MANIFEST_DIR")).join("../..")
@@ -37,13 +37,7 @@ fn role_row(info: &RoleInfo) -> String {
         Way::Out => "out",
         _ => "hence's",
     };
-    // The reason alone: what to do instead is in the message.
-    let why = |reason: &'static str| reason.split(':').next().unwrap_or(reason);
-    let what = match info.status {
-        Status::Supported => info.what.to_owned(),
-        Status::Later(reason) => format!("{} (*not in this version: {}*)", info.what, why(reason)),
-    };
-    format!("| {names} | {way} | {} |\n", cell(&what))
+    format!("| {names} | {way} | {} |\n", cell(info.what))
 }
 
 fn roles() -> String {
@@ -98,7 +92,10 @@ fn the_tables_are_those_of_the_source() {
 fn the_tables_hold_every_row() {
     assert_eq!(roles().lines().count(), ROLES.len() + 2);
     assert!(roles().contains("| `cost_<stream>` | in | a stream of costs"));
-    assert!(roles().contains("`income_<stream>` | in | income of a group (*not in this version: welfare"));
+    assert!(
+        roles()
+            .contains("| `basis`, `basis_<stream>` | in | rate line, schedule id or a number; with a stream")
+    );
     for schedule in Catalogue::builtin().schedules() {
         assert!(schedules().contains(&format!("`{}`", schedule.id())), "{}", schedule.id());
     }

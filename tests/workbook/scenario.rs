@@ -88,6 +88,7 @@ fn stream(
         tail: None,
         growth: None,
         basis: None,
+        income: None,
     }
 }
 
@@ -125,6 +126,7 @@ fn option(case: &Case, sheet: &str, axis: usize, strong: f64, full: bool) -> Cho
         basis: given(case.basis.into(), None),
         timing: None,
         prices: Prices::default(),
+        welfare: Welfare::default(),
         axis,
         streams: vec![works, water, flood],
         effects: Vec::new(),
@@ -291,6 +293,7 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
                 pv,
                 multipliers: None,
                 own: None,
+                weight: None,
             }
         })
         .collect();
@@ -319,6 +322,8 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
         timing: case.timing,
         base_words: "2026".into(),
         prices: None,
+        elasticity: None,
+        exact: None,
         timing_sentence: "a flow in 2026 has factor 1.0000, in 2027 0.9662".into(),
         forward: offsets.iter().map(|&t| (t > 0.0).then(|| curve.forward_rate(t.ceil()).unwrap())).collect(),
         service_years,

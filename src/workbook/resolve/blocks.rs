@@ -77,6 +77,7 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
             tail: None,
             growth: None,
             basis: None,
+            income: None,
         });
     }
     if streams.is_empty() && !context.failed() {

@@ -10,7 +10,7 @@ use crate::roles::{ROLES, Role, key};
 
 use super::find::Named;
 use super::groups::{Group, Split, names_of};
-use super::{Context, counted, prices, settings, streams, targets, texts, years};
+use super::{Context, counted, prices, settings, streams, targets, texts, welfare, years};
 
 /// The options, and what they share.
 pub(super) struct Built {
@@ -66,6 +66,7 @@ fn choice(
     let timing = split.of(group, Role::Timing).and_then(|named| settings::timing(context, named));
     let prices = prices::prices(context, split, group, axis);
     let streams = streams::streams(context, split, group, axis);
+    let welfare = welfare::welfare(context, split, group, axis, &streams);
     let effects = streams::effects(context, split, group, axis);
     let (base, basis) = (base?, basis?);
     let mut choice = Choice {
@@ -74,6 +75,7 @@ fn choice(
         basis,
         timing,
         prices,
+        welfare,
         axis: index,
         streams,
         effects,
@@ -263,7 +265,13 @@ fn check_settings(context: &mut Context, split: &Split, choices: &[Choice]) {
     let setting = |named: &&Named| {
         let about = matches!(
             named.name.role,
-            Role::Unit | Role::Uplift | Role::Residual | Role::Tail | Role::Growth | Role::Basis
+            Role::Unit
+                | Role::Uplift
+                | Role::Residual
+                | Role::Tail
+                | Role::Growth
+                | Role::Basis
+                | Role::Income
         );
         about && named.name.stream.is_some()
     };
@@ -275,6 +283,10 @@ fn check_settings(context: &mut Context, split: &Split, choices: &[Choice]) {
             let stream = named.name.stream.as_deref().unwrap_or_default();
             let known =
                 choices.iter().flat_map(|choice| &choice.streams).any(|s| key(&s.name) == key(stream));
+            let path = choices.iter().any(|choice| choice.welfare.consumption.is_some());
+            let known = known
+                || (named.name.role == Role::Income && key(stream) == welfare::REFERENCE)
+                || (named.name.role == Role::Unit && key(stream) == Role::Consumption.word() && path);
             if !known {
                 context.report(
                     Problem::error("unknown-stream", named.place(), format!("there is no stream `{stream}`"))

@@ -228,6 +228,9 @@ fn words(choice: &Choice) -> Vec<(&SheetRange, String)> {
     if let Some(Given { value: Levels::Index(_), at: Some(at), .. }) = &choice.prices.levels {
         words.push((at, "prices".to_owned()));
     }
+    if let Some(path) = &choice.welfare.consumption {
+        words.push((&path.at, "consumption".to_owned()));
+    }
     for target in &choice.targets {
         let role = match &target.role {
             TargetRole::Factor => "factor".to_owned(),

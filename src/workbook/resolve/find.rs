@@ -4,7 +4,7 @@ use crate::model::DefinedName;
 use crate::problem::{Place, Problem};
 use crate::reading::MAX_CELLS;
 use crate::references::{MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange};
-use crate::roles::{self, Role, RoleName, Status, Way};
+use crate::roles::{self, Role, RoleName, Way};
 
 use super::{Checked, Context};
 
@@ -56,10 +56,6 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
         if name.role.info().way == Way::Own || beaten(&found, &name, given.len()) {
             continue;
         }
-        if let Some(problem) = later(&name, place.clone()) {
-            context.report(problem);
-            continue;
-        }
         match cells(context, defined) {
             Ok(at) => {
                 found.push(Named { name, from: defined.name.clone(), at, scope: scope(context, defined) })
@@ -87,19 +83,6 @@ pub(super) fn unknown_name(place: Place, slip: &str) -> Problem {
     Problem::warning("unknown-name", place, slip).hint("correct the name, or delete it in the name manager")
 }
 
-/// Why a role is not read by this version.
-pub(super) fn later(name: &RoleName, place: Place) -> Option<Problem> {
-    let reason = match name.role.info().status {
-        Status::Supported => return None,
-        Status::Later(reason) => reason,
-    };
-    let (why, what) = reason.split_once(": ").unwrap_or((reason, "leave this name out"));
-    Some(
-        Problem::error("unsupported-role", place, format!("`{}` is not supported: {why}", name.words()))
-            .hint(what),
-    )
-}
-
 /// The sheet a name is scoped to.
 pub(super) fn scope(context: &Context, defined: &DefinedName) -> Option<String> {
     defined.scope.and_then(|index| context.book.sheets.get(index)).map(|sheet| sheet.name.clone())
@@ -125,9 +108,6 @@ fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Name
     })?;
     if name.role.info().way == Way::Own {
         return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given").into());
-    }
-    if let Some(problem) = later(&name, place.clone()) {
-        return Err(problem.into());
     }
     Ok(Named { name, from, at: located(context, place, range)?, scope: None })
 }

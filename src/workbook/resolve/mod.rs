@@ -14,6 +14,7 @@ mod settings;
 mod streams;
 mod targets;
 mod texts;
+mod welfare;
 mod years;
 
 use std::collections::{BTreeMap, BTreeSet};

@@ -13,7 +13,7 @@ use super::find::Named;
 use super::groups::{Group, Split};
 use super::settings::{self, Signs};
 use super::years::direction;
-use super::{Context, blocks, note, prices};
+use super::{Context, blocks, note, prices, welfare};
 
 /// The streams of an option, its own first, then the shared ones.
 pub(super) fn streams(context: &mut Context, split: &Split, group: &Group, axis: &Axis) -> Vec<Stream> {
@@ -44,6 +44,7 @@ pub(super) fn streams(context: &mut Context, split: &Split, group: &Group, axis:
                     tail: None,
                     growth: None,
                     basis: None,
+                    income: None,
                 });
             }
         }
@@ -179,6 +180,7 @@ fn add_settings(context: &mut Context, split: &Split, group: &Group, stream: &mu
         );
     }
     stream.tail = about(Role::Tail).and_then(|named| settings::tail(context, named));
+    stream.income = about(Role::Income).and_then(|named| welfare::income(context, named));
     stream.basis = about(Role::Basis).and_then(|named| settings::basis(context, Some(named), None));
     stream.growth = about(Role::Growth).and_then(|named| prices::growth(context, named));
 }

@@ -220,6 +220,11 @@ fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(SheetRange, String)> {
         inputs
             .extend(prices.declared.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));
         inputs.extend(prices.levels.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));
+        let welfare = &choice.welfare;
+        for given in welfare.elasticity.iter().chain(&welfare.reference) {
+            inputs.extend(given.at.iter().map(|at| (at.clone(), given.from.clone())));
+        }
+        inputs.extend(welfare.consumption.iter().map(|path| (path.at.clone(), path.from.clone())));
         inputs.extend(choice.effects.iter().map(|effect| (effect.at.clone(), effect.name.clone())));
         for stream in &choice.streams {
             inputs.push((stream.at.clone(), stream.from.clone()));
@@ -229,6 +234,9 @@ fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(SheetRange, String)> {
             inputs.extend(stream.uplift.at.iter().map(|at| (at.clone(), stream.uplift.from.clone())));
             inputs.extend(
                 stream.residual.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))),
+            );
+            inputs.extend(
+                stream.income.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))),
             );
             inputs.extend(
                 stream.growth.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))),

@@ -98,7 +98,7 @@ fn multipliers(sheet: &mut Sheet, input: &AuditInput<'_>, series: &Series) {
         first,
         last,
         Style::Wrapped,
-        adjust::multiplier_words(&choice.streams[s], choice),
+        adjust::multiplier_words(&choice.streams[s], choice, &input.outcomes[c]),
     );
     for (i, heading) in ["Year", "Multiplier"].iter().enumerate() {
         sheet.text(HEADING_ROW, first + i as u32, Style::Heading, heading);

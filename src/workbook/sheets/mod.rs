@@ -1,5 +1,6 @@
 //! hence's own sheets: Discounting, which the filled formulas refer to, and the audit sheets.
 
+mod adjustments;
 pub(crate) mod changes;
 mod charts;
 mod checks;
@@ -19,6 +20,8 @@ mod settings;
 mod summary;
 mod tails;
 mod targets;
+mod totals;
+mod welfare;
 
 use hence_core::{Basis, CAUTION};
 

@@ -5,7 +5,7 @@ use chrono::Datelike;
 use super::checks::{Maker, absolute_cell, label_live, place};
 use super::lines::{Line, Live, col};
 use super::rebuild::{base_year, constant};
-use crate::appraisal::{Base, Choice, Label, Levels, Stream};
+use crate::appraisal::{Base, Choice, Given, Label, Levels, Stream};
 use crate::formulas::{nth, refer, refer_cell};
 
 impl Maker<'_> {
@@ -61,12 +61,27 @@ impl Maker<'_> {
         let mut line = Line::factor(place(&cells.sheet, cell), Live { formula: source, value }, style);
         let years = years_formula(&absolute_cell(row, col::WHAT), label, choice, self.home);
         line.offset = Some(Live::number(years, price_years(label, choice)));
-        let text =
+        let mut text =
             formula(stream, choice, i, self.price_base(c), &absolute_cell(row, col::OFFSET), self.home);
+        if let Some(weight) = self.weight_formula(c, s) {
+            text = if text.is_empty() { weight } else { format!("{text}*{weight}") };
+        }
         line.rebuilt = Some(Live::number(text, self.rebuilt_multiplier(c, s, i)));
         let recorded = self.input.outcomes[c].streams[s].multipliers.as_ref().map_or(1.0, |all| all[i]);
         line.recorded = Live::number(refer_cell(self.home, &cells.sheet, cell), recorded);
         line
+    }
+
+    /// The weight of a stream's flows from the cells of incomes and elasticity.
+    fn weight_formula(&self, c: usize, s: usize) -> Option<String> {
+        let choice = &self.input.appraisal.choices[c];
+        let cell = |given: &Given<f64>| {
+            given.at.as_ref().map_or_else(|| constant(given.value), |at| refer(self.home, at))
+        };
+        let income = choice.streams[s].income.as_ref()?;
+        let reference = choice.welfare.reference.as_ref()?;
+        let eta = self.input.outcomes[c].elasticity.as_ref()?;
+        Some(format!("({}/{})^{}", cell(reference), cell(income), cell(eta)))
     }
 
     /// The place among the years of the price base.
@@ -85,7 +100,12 @@ impl Maker<'_> {
             Some(Levels::Index(levels)) => levels[self.price_base(c)] / levels[i],
         };
         let growth = choice.streams[s].growth.as_ref().map_or(0.0, |given| given.value);
-        deflator * (1.0 + growth).powf(n)
+        let elasticity = self.input.outcomes[c].elasticity.as_ref();
+        let weight = match (&choice.streams[s].income, &choice.welfare.reference, elasticity) {
+            (Some(income), Some(reference), Some(eta)) => (reference.value / income.value).powf(eta.value),
+            _ => 1.0,
+        };
+        deflator * (1.0 + growth).powf(n) * weight
     }
 }
 

@@ -6,14 +6,14 @@ use super::checks::{Checks, counts};
 use super::coverage::{Coverage, places};
 use super::discounting::table_ref;
 use super::lines::DIFFERS;
-use super::{AuditInput, block_basis, charts::era_words, charts::thousands};
-use crate::adjust;
+use super::{AuditInput, adjustments, block_basis, charts::era_words, charts::thousands};
 use crate::appraisal::{StreamKind, TargetRole};
 use crate::formulas::{ENDLESS_IRR, NO_IRR, no_ratio, one, refer};
 use crate::layout::{Column, Layout};
 use crate::outcome::ChoiceOutcome;
 use crate::patch::Cached;
 use crate::references::{Cell, Range, SheetRange};
+use crate::welfare;
 use crate::writer::{Sheet, Style};
 
 /// The verdict where everything agrees.
@@ -53,7 +53,7 @@ pub(super) fn sheet(
     page.provenance(input);
     page.basis(input, layout);
     page.results(input, layout);
-    page.list("What was made of the flows as entered", &adjustments(input));
+    page.list("What was made of the flows as entered", &adjustments::words(input));
     page.checks(input, checks, coverage);
     page.warnings(input);
     page.list("What differs in the file by design", input.differs);
@@ -217,6 +217,11 @@ impl Page {
                 format!("{name}; ratio, annual equivalent, rates of return and payback use increments");
             self.pair("Baseline", &text);
         }
+        for (choice, outcome) in input.appraisal.choices.iter().zip(input.outcomes) {
+            if let Some(value) = &outcome.exact {
+                self.pair(&format!("{} against consumption", choice.name), &welfare::words(value));
+            }
+        }
         for (choice, beside) in input.appraisal.choices.iter().zip(input.companions) {
             if let Some(beside) = beside {
                 let t = &beside.totals;
@@ -348,19 +353,21 @@ impl Page {
         }
         self.row += 1;
         let factors: usize = input.outcomes.iter().map(|o| o.factors.len()).sum();
-        let (multipliers, factors) = (checks.multipliers, factors + checks.own_factors);
+        let (multipliers, welfare) = (checks.multipliers, checks.welfare);
+        let factors = factors + checks.own_factors;
         let in_lines = input.cells.iter().filter(|cell| is_factor(input, cell)).count();
         let cells = input.cells.len() - in_lines;
-        let rest = checks.count.saturating_sub(factors + multipliers + cells + checks.settings);
+        let rest = checks.count.saturating_sub(factors + multipliers + welfare + cells + checks.settings);
         for (label, number, allowed) in [
             ("Factors: second route, Discounting, filled cells", factors, "1e-9 relative"),
-            ("Multipliers of flows: prices and their growth", multipliers, "1e-9 relative"),
+            ("Multipliers of flows: prices, their growth, weights", multipliers, "1e-9 relative"),
+            ("Exact values against consumption", welfare, "1e-9 of the gross present value"),
             ("Present values and totals on Discounting", rest, "1e-9 of the gross present value"),
             ("What the workbook states: base, basis, timing and the like", checks.settings, "none"),
             ("Other filled or compared cells", cells, "half of the last displayed unit, or 1e-9"),
             ("Undiscounted totals of valued rows", coverage.valued, "1e-9 relative, or 0.000001"),
         ] {
-            if number == 0 && label.starts_with("Multipliers") {
+            if number == 0 && (label.starts_with("Multipliers") || label.starts_with("Exact")) {
                 continue;
             }
             self.sheet.text(self.row, 0, Style::Wrapped, label);
@@ -402,41 +409,6 @@ fn rates_of_return(outcome: &ChoiceOutcome) -> String {
     });
     let all: Vec<String> = found.chain(open).collect();
     if all.is_empty() { NO_IRR.to_owned() } else { all.join("; ") }
-}
-
-/// Sign, unit, uplift, residual value and what follows the last year, a sentence for each stream that has any.
-fn adjustments(input: &AuditInput<'_>) -> Vec<String> {
-    let mut texts = Vec::new();
-    for (c, choice) in input.appraisal.choices.iter().enumerate() {
-        for (s, stream) in choice.streams.iter().enumerate() {
-            let mut parts = Vec::new();
-            if stream.sign < 0.0 {
-                parts.push("entered with the opposite sign".to_owned());
-            }
-            if stream.unit != 1.0 {
-                parts.push(format!("in units of {}", stream.unit));
-            }
-            if stream.uplift.value != 0.0 {
-                parts.push(format!("raised by {}", hence_core::percent(stream.uplift.value)));
-            }
-            if let Some(residual) = &stream.residual {
-                parts.push(format!("with a value of {} left over in the last year", residual.value));
-            }
-            if let Some(tail) = &stream.tail {
-                parts.push(format!("going on after the last year: {}", tail.value));
-            }
-            if let Some(own) = &input.outcomes[c].streams[s].own {
-                parts.push(format!("discounted on {}, a basis of its own", own.basis.canonical()));
-            }
-            if choice.prices.levels.is_some() || stream.growth.is_some() {
-                parts.push(adjust::multiplier_words(stream, choice));
-            }
-            if !parts.is_empty() {
-                texts.push(format!("{}, {}: {}.", choice.name, stream.name, parts.join("; ")));
-            }
-        }
-    }
-    texts
 }
 
 fn is_factor(input: &AuditInput<'_>, cell: &super::TargetCell) -> bool {

@@ -43,6 +43,8 @@ pub struct Case {
     pub prices: (&'static str, &'static str),
     /// A basis of two streams' own, and whether the factors of one are filled.
     pub own: (&'static str, bool),
+    /// `consumption` or `income`, and the elasticity stated for it, if one is.
+    pub welfare: (&'static str, &'static str),
 }
 
 const YEARS: u32 = 40;
@@ -52,7 +54,7 @@ const YEARS: u32 = 40;
 pub const CASES: &[Case] = {
     use Labels::*;
     const fn case(basis: &'static str, timing: &'static str, labels: Labels, across: bool, factors: bool) -> Case {
-        Case { basis, timing, labels, across, factors, past: 0, settings: false, prices: ("", ""), own: ("", false) }
+        Case { basis, timing, labels, across, factors, past: 0, settings: false, prices: ("", ""), own: ("", false), welfare: ("", "") }
     }
     const fn with(case: Case, past: u32, settings: bool) -> Case {
         Case { past, settings, ..case }
@@ -62,6 +64,9 @@ pub const CASES: &[Case] = {
     }
     const fn own(case: Case, basis: &'static str, factors: bool) -> Case {
         Case { own: (basis, factors), ..case }
+    }
+    const fn faring(case: Case, by: &'static str, elasticity: &'static str) -> Case {
+        Case { welfare: (by, elasticity), ..case }
     }
     const BANDS: &str = "3.5% to 30, 3% to 75, 2.5% after";
     &[
@@ -106,6 +111,14 @@ pub const CASES: &[Case] = {
         own(priced(with(case("4%", "flows end", Dates, false, true), 0, true), "nominal", "inflation, growth"), "1%", false),
         own(case("3% to 10.5, 2% after", "flows end", Calendar, true, true), "1%", true),
         own(case("3%", "flows end", Calendar, true, false), "2% to 7.5, 1% after", true),
+        // Flows weighted by income, and flows against consumption.
+        faring(with(case("3.5%", "flows end", Calendar, true, true), 2, true), "income", "1.3"),
+        faring(priced(case("preference 1%, elasticity 2, growth 2%; exact", "flows end", Slash, false, false), "nominal", "inflation, growth"), "income", ""),
+        faring(case("preference 0.5%, hazard 1%, elasticity 1, growth 2%", "flows end", Calendar, true, true), "consumption", ""),
+        faring(with(case(BANDS, "flows averaged", Slash, false, false), 3, true), "consumption", "1.5"),
+        faring(case("4%", "flows end", Offsets, true, false), "consumption", "0.5"),
+        faring(priced(with(case("3%", "flows middle, base start", Calendar, false, true), 2, false), "real 2030", "inflation"), "consumption", "2"),
+        faring(case("3% to 10.5, 2% after", "flows end", Calendar, true, true), "consumption", "1.5"),
         // Without a second route: an edge within a year, and a table of factors.
         case("3% to 10.5, 2% after", "flows end", Calendar, true, true),
         case("factors-2026", "flows end", Numbers, false, true),
@@ -160,6 +173,11 @@ impl Case {
     /// The i-th level of prices.
     pub fn level(&self, i: u32) -> String {
         self.at(9, i).to_string()
+    }
+
+    /// The i-th level of consumption.
+    pub fn consumption(&self, i: u32) -> String {
+        self.at(11, i).to_string()
     }
 
     /// The i-th factor of a stream on its own basis.
@@ -227,6 +245,22 @@ impl Case {
             cells += &format!("A10: 'Prices | '{prices}\nA11: 'Inflation | 0.025\nA12: 'Growth | 0.012\n");
             names += ", hence_price_basis B10";
         }
+        let (by_welfare, elasticity) = self.welfare;
+        if !elasticity.is_empty() {
+            cells += &format!("D11: 'Elasticity | {elasticity}\n");
+            names += ", hence_elasticity E11";
+        }
+        if by_welfare == "income" {
+            cells += "D12: 'Incomes | 18000 | 30000\n";
+            names += ", hence_income_access E12, hence_income_running E12, hence_income_reference F12";
+        }
+        if by_welfare == "consumption" {
+            cells += &self.values(11, |i| format!("{}", 6000.0 + 100.0 * f64::from(i)));
+            names += &format!(", hence_consumption {}", self.range(11));
+            if self.settings {
+                names += ", hence_unit_consumption B5";
+            }
+        }
         let (own, own_factors) = self.own;
         if !own.is_empty() {
             cells += &format!("D10: 'Own basis | '{own}\n");
@@ -293,7 +327,8 @@ pub fn options() -> Small {
     let column = |col: &str, value: &dyn Fn(u32) -> f64| -> String {
         (0..20).map(|i| format!("{col}{}: {}\n", 5 + i, value(i))).collect()
     };
-    let wall = years(2026)
+    let wall = column("H", &|i| 20_000.0 + 300.0 * f64::from(i))
+        + &years(2026)
         + &column("B", &|i| if i < 3 { 400.0 } else { 12.0 })
         + &column("C", &|i| 60.0 - f64::from(i))
         + &column("D", &|i| f64::from(i % 3));
@@ -305,16 +340,16 @@ pub fn options() -> Small {
         .sheet(
             "Inputs",
             "A1: 'Base | 2026\nA2: 'Basis | '3.5% to 10, 3% after\nA3: 'Baseline | 'Do nothing\n\
-             A4: 'Left of the works | 80\nA5: 'Damage | 'growing 1%, to 2075\nA6: 'Constrained | 'works",
+             A4: 'Left of the works | 80\nA5: 'Damage | 'growing 1%, to 2075\nA6: 'Constrained | 'works\nA7: 'Elasticity | 1.5",
         )
         .names(
             "hence_base B1, hence_basis B2, hence_baseline B3, hence_residual_works B4, hence_tail_flood B5, \
-             hence_budget B6",
+             hence_budget B6, hence_elasticity B7",
         )
         .sheet("Do nothing", &nothing)
         .own_names(common)
         .sheet("The wall's end", &wall)
-        .own_names(&format!("{common}, hence_effect_homes D5:D24"))
+        .own_names(&format!("{common}, hence_effect_homes D5:D24, hence_consumption H5:H24"))
 }
 
 /// What hence can say of a workbook whose own formulas give some of the results.

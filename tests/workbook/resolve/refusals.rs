@@ -46,14 +46,6 @@ fn whole_rows_and_columns() {
 }
 
 #[test]
-fn roles_of_a_later_version_are_refused_by_name() {
-    for name in ["hence_consumption", "hence_income_low"] {
-        let problems = named("", &format!("{name} F1")).problems();
-        assert_eq!(problems, [format!("unsupported-role [{name}]")], "{name}");
-    }
-}
-
-#[test]
 fn a_target_may_not_overwrite_what_is_read_or_another_target() {
     assert_eq!(named("", "hence_pv_works B6:D6").problems(), ["target-overlap Plan!B6:D6 [hence_pv_works]"]);
     assert_eq!(named("", "hence_npv B1").problems(), ["target-overlap Plan!B1 [hence_npv]"]);
