@@ -253,11 +253,16 @@ fn beside(declared: &Valued, catalogue: &Catalogue) -> Result<Option<Valued>> {
     let mut appraisal = declared.appraisal.clone();
     let mut any = false;
     for (choice, outcome) in appraisal.choices.iter_mut().zip(&declared.outcomes) {
-        let companion = outcome.basis.beside(catalogue);
-        let companion = companion.map_err(|error| from_core(&error, Place::name(&choice.name)))?;
-        if let Some(basis) = companion {
-            choice.basis.value = basis.canonical();
-            any = true;
+        let own = choice.streams.iter_mut().zip(&outcome.streams);
+        let own =
+            own.filter_map(|(stream, valued)| Some((stream.basis.as_mut()?, &valued.own.as_ref()?.basis)));
+        for (given, basis) in std::iter::once((&mut choice.basis, &outcome.basis)).chain(own) {
+            let companion = basis.beside(catalogue);
+            let companion = companion.map_err(|error| from_core(&error, Place::name(&choice.name)))?;
+            if let Some(basis) = companion {
+                given.value = basis.canonical();
+                any = true;
+            }
         }
     }
     if !any {

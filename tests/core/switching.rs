@@ -198,7 +198,7 @@ fn precaution_bends_the_rate_so_that_an_elasticity_occurs_twice() {
 fn flows_for_ever_are_part_of_it() {
     let endless = |flow, growth, every| Perpetual { start: 0.0, flow, growth, every };
     let find = |flows: &[f64], perpetual: &[Perpetual], line: &str, parameter: Parameter| {
-        let net = OptionFlows { offsets: &years(flows.len()), flows, perpetual: endless };
+        let net = OptionFlows { offsets: &years(flows.len()), flows, perpetual };
         switching_values(&net, &spec(line), &NO_BASE, parameter, parameter.interval()).unwrap()
     };
     // 5 growing by 1% for ever is worth 5.05/(r - 1%), which is 100 at 6.05%.
