@@ -14,14 +14,17 @@ mod curve;
 mod dd;
 mod error;
 mod evidence;
+mod growth;
 mod irr;
 mod measures;
 mod perpetuity;
 mod prices;
 mod rateline;
+mod roots;
 mod schedule;
 mod spec;
 mod sum;
+mod switching;
 mod tail;
 mod timing;
 
@@ -30,7 +33,11 @@ pub use calendar::{DayCount, offset_of_dates, parse_financial_year, years_after_
 pub use catalogue::Catalogue;
 pub use curve::{Curve, Domain, Parts};
 pub use error::{Error, ErrorKind, Result};
-pub use evidence::{elasticity_from_taxes, equity_weight, ramsey_rate, ramsey_rate_uncertain};
+pub use evidence::{
+    TaxBracket, elasticity_from_tax_brackets, elasticity_from_taxes, equity_weight, hazard_from_probability,
+    hazard_from_waiting_time, ramsey_rate, ramsey_rate_uncertain,
+};
+pub use growth::{Estimate, GrowthEstimate, growth_from_consumption};
 pub use irr::{IRR_INTERVAL, IrrSearch, internal_rates};
 pub use measures::{
     Eras, Increment, Payback, annual_equivalent, benefit_cost_ratio, cost_per_effect, discounted_payback,
@@ -40,7 +47,8 @@ pub use measures::{
 pub use prices::{nominal_rate, real_flows, real_flows_by_inflation, real_rate};
 pub use rateline::{RateLine, distance, percent};
 pub use schedule::{Schedule, ScheduleStatus};
-pub use spec::{Band, Compounding, Edge, HorizonRule, Spec, Where};
+pub use spec::{Band, Compounding, Edge, GrowthState, HorizonRule, Persistence, Spec, Where};
 pub use sum::{ExactSum, dot, sum};
+pub use switching::{Endless, NetFlows, Parameter, Switching, switching_multiplier, switching_values};
 pub use tail::Tail;
 pub use timing::{Position, TimedOffset, Timing, timing_sentence};

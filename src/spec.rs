@@ -36,6 +36,24 @@ pub enum HorizonRule {
     ByLength,
 }
 
+/// First-order persistence: log growth is its mean plus y_n, where y_n = phi y_(n-1) + e_n with a yearly shock e_n.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Persistence {
+    /// The share of a year's departure from mean growth that is left a year later, between -1 and 1.
+    pub phi: f64,
+    /// y_0, the departure from mean log growth in the year that ends at the base; other than 0 in schedule files only.
+    pub start: f64,
+}
+
+/// One state of growth: log growth is normal with this mean and standard deviation.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct GrowthState {
+    /// Mean of log growth, a fraction per year.
+    pub mean: f64,
+    /// Its standard deviation.
+    pub sd: f64,
+}
+
 /// A curve as stated. [`Spec::curve`] makes it computable; `Display` prints the canonical rate line.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Spec {
@@ -96,10 +114,26 @@ pub enum Spec {
         sd: f64,
         /// Growth is stated as log growth; compounding is then continuous.
         log: bool,
-        /// First-order persistence; only `None` is computed in this version.
-        persistence: Option<f64>,
+        /// First-order persistence of log growth (only with `log`); `None`: independent from year to year. With it,
+        /// `sd` is that of the yearly shock.
+        persistence: Option<Persistence>,
         /// Yearly, unless the line says continuous; always continuous with `log`.
         compounding: Compounding,
+    },
+    /// The Ramsey rule with growth that switches between states from year to year; in schedule files only.
+    GrowthRegimes {
+        /// Pure time preference, continuous.
+        preference: f64,
+        /// Hazard, continuous.
+        hazard: f64,
+        /// Elasticity of marginal utility.
+        elasticity: f64,
+        /// Log growth in each state.
+        states: Vec<GrowthState>,
+        /// The chances of passing from a state (row) to each state (column) before the next year's growth is drawn.
+        transition: Vec<Vec<f64>>,
+        /// The chances of being in each state at the base.
+        start: Vec<f64>,
     },
     /// Gamma-distributed continuous rates.
     Gamma {
@@ -121,4 +155,17 @@ pub struct Where {
     pub base_year: Option<i32>,
     /// The appraisal's length in years: the largest offset of its flows, unless stated.
     pub length: Option<f64>,
+}
+
+impl Spec {
+    /// Whether a rate line can state it. A table of factors, growth in states, and growth that departs from its mean
+    /// at the base live in schedule files only.
+    pub fn fits_a_line(&self) -> bool {
+        match self {
+            Spec::Table(_) | Spec::GrowthRegimes { .. } => false,
+            Spec::UncertainGrowth { persistence: Some(persistence), .. } => persistence.start == 0.0,
+            Spec::Mixture(parts) => parts.iter().all(|(_, spec)| spec.fits_a_line()),
+            _ => true,
+        }
+    }
 }

@@ -5,6 +5,7 @@ mod basis;
 mod calendar;
 mod curves;
 mod exact;
+mod growth;
 mod irr;
 mod measures;
 mod prices;
@@ -13,6 +14,7 @@ mod rateline;
 mod schedule_factors;
 mod schedules;
 mod sums;
+mod switching;
 mod tails;
 mod timing;
 
