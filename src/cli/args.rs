@@ -45,6 +45,8 @@ pub enum Command {
     Fill(Fill),
     /// Compare what a workbook holds with what its declared basis gives
     Check(Check),
+    /// Compare the options under several bases, and find where the decision switches
+    Compare(Compare),
     /// Print the factors and rates of a curve
     Curve(Curve),
     /// List the schedules, or print one with its source
@@ -120,6 +122,31 @@ pub struct Check {
     /// Print one JSON document
     #[arg(long)]
     pub json: bool,
+}
+
+#[derive(Debug, Args)]
+pub struct Compare {
+    /// The workbook; - reads it from standard input
+    #[arg(value_name = "BOOK")]
+    pub book: PathBuf,
+    /// Rate lines or schedules to value it on, besides the one it declares and the companion of that; several may follow
+    #[arg(long, value_name = "LINE|ID")]
+    pub against: Vec<String>,
+    /// Give a role to cells without a defined name
+    #[arg(long = "role", value_name = "ROLE=RANGE")]
+    pub roles: Vec<String>,
+    /// Write the tables into a workbook of their own (.xlsx); - for standard output
+    #[arg(long, value_name = "FILE")]
+    pub out: Option<PathBuf>,
+    /// Comma-separated values
+    #[arg(long, conflicts_with = "json")]
+    pub csv: bool,
+    /// Print one JSON document
+    #[arg(long)]
+    pub json: bool,
+    /// Replace an existing output
+    #[arg(long)]
+    pub force: bool,
 }
 
 #[derive(Debug, Args)]
@@ -200,6 +227,9 @@ fn is_negative(argument: &OsStr) -> bool {
     rest.is_some_and(|rest| rest.starts_with(|c: char| c.is_ascii_digit()))
 }
 
+/// The option after which several values may stand, once the workbook has been named.
+const SEVERAL: &str = "--against";
+
 /// The arguments as the parser below wants them: `hence BOOK` alone is `hence fill BOOK`, so that a workbook can be
 /// dropped on the program, and arguments that begin with a minus sign and a digit are no options.
 pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
@@ -207,6 +237,7 @@ pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
     let mut prepared: Vec<OsString> = Vec::with_capacity(args.len() + 1);
     let mut command: Option<String> = None;
     let mut wants_value = false;
+    let (mut against, mut book) = (false, false);
     for (i, arg) in args.into_iter().enumerate() {
         let text = arg.to_string_lossy().into_owned();
         if i == 0 {
@@ -227,6 +258,7 @@ pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
         }
         if text.starts_with('-') && text != "-" && !is_negative(&arg) {
             wants_value = takes_value(&cli, &text);
+            against = text == SEVERAL || text.starts_with(&format!("{SEVERAL}="));
             prepared.push(arg);
             continue;
         }
@@ -244,6 +276,13 @@ pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
             }
         }
         let mut named = OsString::new();
+        if against && book {
+            named.push(format!("{SEVERAL}="));
+            named.push(arg);
+            prepared.push(named);
+            continue;
+        }
+        book = true;
         if is_negative(&arg) && command.as_deref() != Some("curve") {
             // A file: "./-1.xlsx" cannot be taken for an option.
             named.push("./");
@@ -305,6 +344,23 @@ mod tests {
         assert_eq!(after(&["curve", "-1%", "--at", "-1,0"]), ["curve", "-1%", "--at=-1,0"]);
         assert_eq!(after(&["fill", "-1.xlsx", "--basis", "-0.5%"]), ["fill", "./-1.xlsx", "--basis=-0.5%"]);
         assert_eq!(after(&["-1.xlsx"]), ["fill", "./-1.xlsx"]);
+        let compared =
+            ["compare", "a.xlsx", "--against", "3%", "-1%", "--json", "--against", "-0.5%", "uk-2003"];
+        let due = [
+            "compare",
+            "a.xlsx",
+            "--against",
+            "3%",
+            "--against=-1%",
+            "--json",
+            "--against=-0.5%",
+            "--against=uk-2003",
+        ];
+        assert_eq!(after(&compared), due);
+        assert_eq!(
+            after(&["compare", "--against", "3%", "a.xlsx"]),
+            ["compare", "--against", "3%", "a.xlsx"]
+        );
         assert_eq!(after(&["fill", "--by", "x", "-2.xlsx"]), ["fill", "--by", "x", "./-2.xlsx"]);
     }
 }

@@ -8,6 +8,7 @@ pub mod check;
 mod clock;
 pub mod codes;
 mod companions;
+pub mod compare;
 pub mod fill;
 mod follow;
 pub mod formulas;

@@ -3,13 +3,13 @@
 use std::collections::BTreeMap;
 
 use hence_core::{
-    Curve, Eras, IRR_INTERVAL, cost_per_effect, discounted_payback, dot, era_shares, internal_rates,
+    Curve, Endless, Eras, IRR_INTERVAL, cost_per_effect, discounted_payback, dot, era_shares, internal_rates,
     mean_time, npv_per_budget, sum,
 };
 
 use crate::appraisal::{Choice, Stream, StreamKind};
 use crate::clock::Clock;
-use crate::outcome::{ChoiceOutcome, StreamOutcome};
+use crate::outcome::{ChoiceOutcome, Flows, StreamOutcome};
 use crate::roles::key;
 use crate::valuation::side;
 
@@ -21,8 +21,8 @@ const LISTED: f64 = 1_000.0;
 pub(crate) struct Further {
     /// Years after the base, flow and factor of each.
     flows: Vec<(f64, f64, f64)>,
-    /// The flows go on for ever, so those listed are not all.
-    endless: bool,
+    /// The flows go on for ever, so those listed are not all; they start from the last year's years after the base.
+    endless: Option<Endless>,
 }
 
 impl Further {
@@ -37,8 +37,13 @@ impl Further {
         let (Some(tail), Some(&last)) = (&stream.tail, clock.years.last()) else {
             return Ok(Further::default());
         };
-        let endless = tail.value.to.is_none();
-        let up_to = if endless { LISTED } else { f64::from(i32::MAX) };
+        let endless = tail.value.to.is_none().then(|| Endless {
+            start: last,
+            flow: last_flow,
+            growth: tail.value.growth,
+            every: f64::from(tail.value.every),
+        });
+        let up_to = if endless.is_some() { LISTED } else { f64::from(i32::MAX) };
         let flows = tail.value.flows(last, last_flow, base_year, up_to)?;
         let valued = flows.into_iter().map(|(years, flow)| {
             let factor = curve.timed_factor(years, clock.timing)?;
@@ -54,24 +59,36 @@ pub(crate) struct Moments {
     dated: Vec<(f64, f64)>,
     /// Offset of the year and present value.
     valued: Vec<(f64, f64)>,
-    /// Some flows go on for ever.
-    endless: bool,
+    /// What goes on for ever, from the offset of its last year; those of its flows that are listed for payback are not
+    /// among the dated.
+    endless: Vec<Endless>,
 }
 
 impl Moments {
     /// Those of an option as it stands.
     pub fn of(choice: &Choice, outcome: &ChoiceOutcome, further: &[Further], clock: &Clock) -> Self {
-        let mut moments = Moments { dated: Vec::new(), valued: Vec::new(), endless: false };
+        let mut moments = Moments { dated: Vec::new(), valued: Vec::new(), endless: Vec::new() };
         for (i, (t, net)) in outcome.offsets.iter().zip(&outcome.net).enumerate() {
             moments.add(clock, *t, *net, net * outcome.factors[i]);
         }
         for (stream, further) in choice.streams.iter().zip(further) {
             let (above, below) = side(stream.kind);
             for (years, flow, factor) in &further.flows {
-                let net = flow * (above - below);
-                moments.add(clock, clock.offset(*years), net, net * factor);
+                let (t, net) = (clock.offset(*years), flow * (above - below));
+                match further.endless {
+                    Some(_) => moments.valued.push((t, net * factor)),
+                    None => moments.add(clock, t, net, net * factor),
+                }
             }
-            moments.endless |= further.endless;
+            if let Some(endless) = further.endless {
+                let moment = |(start, share): (f64, f64)| Endless {
+                    start,
+                    flow: share * endless.flow * (above - below),
+                    ..endless
+                };
+                let at = clock.moments(clock.offset(endless.start));
+                moments.endless.extend(at.into_iter().map(moment));
+            }
         }
         moments
     }
@@ -81,19 +98,30 @@ impl Moments {
         self.valued.push((t, value));
     }
 
+    /// The flows as they are dated, whatever they are worth.
+    pub fn flows(&self) -> Flows {
+        let (offsets, flows) = merged(&self.dated);
+        Flows { offsets, flows, endless: self.endless.clone() }
+    }
+
     /// These less those of the baseline, whose years may differ.
     pub fn less(&self, base: &Moments) -> Moments {
         let negative = |list: &[(f64, f64)]| list.iter().map(|(t, x)| (*t, -x)).collect::<Vec<_>>();
         Moments {
             dated: [self.dated.clone(), negative(&base.dated)].concat(),
             valued: [self.valued.clone(), negative(&base.valued)].concat(),
-            endless: self.endless || base.endless,
+            endless: [self.endless.clone(), against(&base.endless)].concat(),
         }
     }
 }
 
+/// Endless flows with the opposite sign.
+pub(crate) fn against(endless: &[Endless]) -> Vec<Endless> {
+    endless.iter().map(|endless| Endless { flow: -endless.flow, ..*endless }).collect()
+}
+
 /// Sums of flows at one offset, in order; offsets that differ by rounding alone are one.
-fn merged(list: &[(f64, f64)]) -> (Vec<f64>, Vec<f64>) {
+pub(crate) fn merged(list: &[(f64, f64)]) -> (Vec<f64>, Vec<f64>) {
     let mut at: BTreeMap<i64, (f64, Vec<f64>)> = BTreeMap::new();
     for (t, x) in list {
         let entry = at.entry((t * 1e6).round() as i64).or_insert((*t, Vec::new()));
@@ -104,10 +132,10 @@ fn merged(list: &[(f64, f64)]) -> (Vec<f64>, Vec<f64>) {
 
 /// Rates of return and payback.
 pub(crate) fn measure_net(outcome: &mut ChoiceOutcome, moments: &Moments) {
-    outcome.endless = moments.endless;
+    outcome.endless = !moments.endless.is_empty();
     outcome.irr.clear();
     outcome.irr_unresolved.clear();
-    if !moments.endless {
+    if moments.endless.is_empty() {
         let (offsets, flows) = merged(&moments.dated);
         // The one error possible is that every flow is 0: no rate is special then.
         if let Ok(found) = internal_rates(&offsets, &flows, IRR_INTERVAL) {
@@ -117,7 +145,7 @@ pub(crate) fn measure_net(outcome: &mut ChoiceOutcome, moments: &Moments) {
     }
     let (offsets, values) = merged(&moments.valued);
     outcome.payback = discounted_payback(&offsets, &values).unwrap_or_default();
-    if moments.endless && outcome.totals().npv < 0.0 {
+    if outcome.endless && outcome.totals().npv < 0.0 {
         // Flows beyond those listed pull it below zero in the end.
         outcome.payback.last = None;
     }
@@ -140,13 +168,13 @@ pub(crate) fn measure_gross(outcome: &mut ChoiceOutcome, further: &[Further], cl
                 moments.push((at, share * flow * factor));
             }
         }
-        if further.endless {
+        if further.endless.is_some() {
             let listed: Vec<f64> = further.flows.iter().map(|(_, flow, factor)| flow * factor).collect();
             let beyond = eras.0.last().copied().unwrap_or(0.0).max(LISTED) + 1.0;
             years.push((beyond, stream.pv_tail - sum(&listed)));
         }
     }
-    let endless = further.iter().any(|further| further.endless);
+    let endless = further.iter().any(|further| further.endless.is_some());
     let (offsets, gross): (Vec<f64>, Vec<f64>) = years.into_iter().unzip();
     outcome.era_shares = era_shares(&offsets, &gross, &eras).unwrap_or_default();
     let (offsets, gross): (Vec<f64>, Vec<f64>) = moments.into_iter().unzip();

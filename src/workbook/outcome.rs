@@ -1,6 +1,6 @@
 //! The numbers of an appraisal under its basis: factors, present values and measures, by option.
 
-use hence_core::{Basis, Curve, Payback, Timing};
+use hence_core::{Basis, Curve, Endless, NetFlows, Payback, Timing};
 
 /// What one stream comes to.
 #[derive(Clone, Debug, PartialEq)]
@@ -36,6 +36,24 @@ pub struct Totals {
     pub annual: Option<f64>,
 }
 
+/// The net flows of an option as it stands, what follows the last year included.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Flows {
+    /// Offsets in years, rising, each once; an averaged flow stands half at each end of its year.
+    pub offsets: Vec<f64>,
+    /// As many flows, benefits positive.
+    pub flows: Vec<f64>,
+    /// What goes on for ever.
+    pub endless: Vec<Endless>,
+}
+
+impl Flows {
+    /// As the library takes them.
+    pub fn net(&self) -> NetFlows<'_> {
+        NetFlows { offsets: &self.offsets, flows: &self.flows, endless: &self.endless }
+    }
+}
+
 /// What one option comes to.
 #[derive(Clone, Debug)]
 pub struct ChoiceOutcome {
@@ -60,6 +78,8 @@ pub struct ChoiceOutcome {
     pub streams: Vec<StreamOutcome>,
     /// Net flow of each year (benefits and flows less costs and damages).
     pub net: Vec<f64>,
+    /// The same as dated flows, those that follow the last year included.
+    pub dated: Flows,
     /// N of the annual equivalent.
     pub service_years: u32,
     /// Sum of the factors of service years 1 to N.

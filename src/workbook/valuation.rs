@@ -8,7 +8,7 @@ use hence_core::{
 use crate::appraisal::{Appraisal, COMMAND_LINE, Choice, Label, Stream, StreamKind};
 use crate::clock::{Clock, base_words, base_year, label_words, sentence};
 use crate::measuring::{Further, Moments, measure_gross, measure_net, measure_units};
-use crate::outcome::{ChoiceOutcome, StreamOutcome, Totals};
+use crate::outcome::{ChoiceOutcome, Flows, StreamOutcome, Totals};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::references::{Cell, Range, SheetRange};
 use crate::roles::key;
@@ -211,12 +211,14 @@ fn value_choice(
         npv_per_budget: None,
         effects: Vec::new(),
         net,
+        dated: Flows::default(),
         streams,
         factors,
         basis,
         curve,
     };
     let moments = Moments::of(choice, &outcome, &further, &clock);
+    outcome.dated = moments.flows();
     measure_net(&mut outcome, &moments);
     measure_gross(&mut outcome, &further, &clock);
     measure_units(&mut outcome, choice, None);

@@ -2,6 +2,7 @@
 
 mod books;
 mod check;
+mod compare;
 mod curve;
 mod errors;
 mod fill;

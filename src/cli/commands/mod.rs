@@ -1,6 +1,7 @@
 //! One module a command.
 
 pub mod check;
+pub mod compare;
 pub mod curve;
 pub mod fill;
 pub mod names;
