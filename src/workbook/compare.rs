@@ -1,0 +1,258 @@
+//! Options side by side under several bases, and where the decision switches.
+
+mod search;
+mod tables;
+
+use hence_core::{Basis, Catalogue};
+
+use crate::appraisal::{Appraisal, COMMAND_LINE, Given};
+use crate::model::Workbook;
+use crate::outcome::{ChoiceOutcome, Totals};
+use crate::package::Package;
+use crate::preflight::preflight;
+use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
+use crate::report::Status;
+use crate::resolve::{Options, resolve};
+use crate::valuation::{from_core, value};
+
+pub use tables::{book, change_words, heading, note, shown, words};
+
+pub use search::{Change, Entry, MULTIPLIERS, Moved, ramsey_basis, search};
+
+/// What takes part in a comparison, besides what the workbook declares.
+#[derive(Clone, Debug, Default)]
+pub struct CompareRequest {
+    /// Rate lines or ids of schedules.
+    pub against: Vec<String>,
+    /// Roles for cells without a defined name: role, range.
+    pub roles: Vec<(String, String)>,
+}
+
+/// Why a basis takes part.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Why {
+    /// The workbook declares it.
+    Declared,
+    /// The schedule that the declared one's body wants run beside it.
+    Companion,
+    /// It was asked for.
+    Against,
+}
+
+impl Why {
+    /// In one word.
+    pub fn word(self) -> &'static str {
+        match self {
+            Why::Declared => "declared",
+            Why::Companion => "companion",
+            Why::Against => "against",
+        }
+    }
+}
+
+/// What one option comes to under one basis.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Standing {
+    /// The canonical basis it was valued on.
+    pub basis: String,
+    /// Totals, over the baseline where there is one.
+    pub totals: Totals,
+    /// 1 for the highest net present value; equal ones share a rank.
+    pub rank: usize,
+}
+
+/// Every option under one basis.
+#[derive(Clone, Debug)]
+pub struct Side {
+    /// Why it takes part.
+    pub why: Why,
+    /// The canonical basis; of options that declare several, all of them.
+    pub basis: String,
+    /// In words, with its source.
+    pub words: String,
+    /// One an option, in their order.
+    pub standings: Vec<Standing>,
+    /// The option that ranks first; none where several share that rank.
+    pub best: Option<usize>,
+}
+
+/// A comparison.
+#[derive(Clone, Debug)]
+pub struct Comparison {
+    /// Names of the options.
+    pub options: Vec<String>,
+    /// Which of them is the baseline.
+    pub baseline: Option<usize>,
+    /// The bases, the declared one first.
+    pub sides: Vec<Side>,
+    /// The basis whose preference, elasticity and growth were searched, where any is stated by them.
+    pub ramsey: Option<String>,
+    /// Switching values: an entry for every option, what it is held against and every parameter.
+    pub switching: Vec<Entry>,
+    /// Where the best option changes, as one parameter moves.
+    pub changes: Vec<Change>,
+    /// Everything found.
+    pub problems: Vec<Problem>,
+}
+
+impl Comparison {
+    /// Done, unless a problem is an error.
+    pub fn status(&self) -> Status {
+        let wrong = self.problems.iter().any(|problem| problem.severity == Severity::Error);
+        if wrong { Status::Problems } else { Status::Done }
+    }
+}
+
+/// Values a workbook valued on one basis.
+pub struct Valued {
+    /// Why it takes part.
+    pub why: Why,
+    /// The workbook with that basis in it.
+    pub appraisal: Appraisal,
+    /// One an option.
+    pub outcomes: Vec<ChoiceOutcome>,
+}
+
+/// Compares the options of one workbook; nothing is written.
+///
+/// # Errors
+/// Everything that keeps the workbook from being read, or valued on any basis but a companion, each with its cell.
+pub fn compare(package: &Package, request: &CompareRequest, catalogue: &Catalogue) -> Result<Comparison> {
+    let mut problems = preflight(package)?;
+    let book = Workbook::read(package)?;
+    let mut appraisal = resolve(package, &book, &Options { roles: &request.roles, basis: None })?;
+    problems.append(&mut appraisal.problems);
+    let valued = value_all(appraisal, &request.against, catalogue, &mut problems)?;
+    Ok(comparison(&valued, problems))
+}
+
+/// The comparison of a workbook valued on every basis, the declared one first.
+pub(crate) fn comparison(valued: &[Valued], problems: Vec<Problem>) -> Comparison {
+    let declared = &valued[0];
+    let ramsey = ramsey_basis(valued);
+    let (switching, changes) = search(declared, ramsey);
+    Comparison {
+        options: declared.appraisal.choices.iter().map(|choice| choice.name.clone()).collect(),
+        baseline: declared.appraisal.baseline,
+        sides: valued.iter().map(side).collect(),
+        ramsey: ramsey.map(|valued| valued.outcomes[0].basis.canonical()),
+        switching,
+        changes,
+        problems,
+    }
+}
+
+/// The workbook on its declared basis, on the companion of that, and on every basis asked for; each once.
+pub(crate) fn value_all(
+    appraisal: Appraisal,
+    against: &[String],
+    catalogue: &Catalogue,
+    problems: &mut Vec<Problem>,
+) -> Result<Vec<Valued>> {
+    let (outcomes, found) = value(&appraisal, catalogue)?;
+    problems.extend(found);
+    let mut valued = vec![Valued { why: Why::Declared, appraisal, outcomes }];
+    match beside(&valued[0], catalogue) {
+        Ok(companion) => valued.extend(companion),
+        Err(error) => {
+            let why = error.problems().iter().map(|problem| problem.message.as_str()).collect::<Vec<_>>();
+            let message =
+                format!("the schedule to be run beside cannot value the workbook: {}", why.join("; "));
+            let problem = Problem::warning("companion", Place::default(), message);
+            problems
+                .push(problem.hint("value the workbook on the companion schedule by itself, with --basis"));
+        }
+    }
+    let mut errors = Vec::new();
+    for line in against {
+        match on_basis(&valued[0].appraisal, line, catalogue) {
+            Ok((appraisal, outcomes, found)) => {
+                let same = |other: &Valued| {
+                    other
+                        .outcomes
+                        .iter()
+                        .zip(&outcomes)
+                        .all(|(a, b)| a.basis == b.basis && a.timing == b.timing)
+                };
+                if !valued.iter().any(same) {
+                    problems.extend(
+                        found.into_iter().filter(|problem| !problems.contains(problem)).collect::<Vec<_>>(),
+                    );
+                    valued.push(Valued { why: Why::Against, appraisal, outcomes });
+                }
+            }
+            Err(error) => errors.extend(error.problems().iter().map(|problem| Problem {
+                message: format!("on {line}: {}", problem.message),
+                ..problem.clone()
+            })),
+        }
+    }
+    if errors.is_empty() { Ok(valued) } else { Err(errors.into()) }
+}
+
+type OnBasis = (Appraisal, Vec<ChoiceOutcome>, Vec<Problem>);
+
+/// Every option on one basis.
+fn on_basis(appraisal: &Appraisal, line: &str, catalogue: &Catalogue) -> Result<OnBasis> {
+    let place = || Place::name(COMMAND_LINE);
+    let basis = Basis::parse(line, catalogue)
+        .map_err(|error| WorkbookError::from(from_core(&error, place())))?
+        .canonical();
+    let mut appraisal = appraisal.clone();
+    for choice in &mut appraisal.choices {
+        choice.basis = Given { value: basis.clone(), at: None, from: COMMAND_LINE.to_owned() };
+    }
+    let (outcomes, problems) = value(&appraisal, catalogue)?;
+    Ok((appraisal, outcomes, problems))
+}
+
+/// Every option on the companion of its schedule, those without one on their own basis; none where none has one.
+fn beside(declared: &Valued, catalogue: &Catalogue) -> Result<Option<Valued>> {
+    let mut appraisal = declared.appraisal.clone();
+    let mut any = false;
+    for (choice, outcome) in appraisal.choices.iter_mut().zip(&declared.outcomes) {
+        let companion = outcome.basis.beside(catalogue);
+        let companion = companion.map_err(|error| from_core(&error, Place::name(&choice.name)))?;
+        if let Some(basis) = companion {
+            choice.basis.value = basis.canonical();
+            any = true;
+        }
+    }
+    if !any {
+        return Ok(None);
+    }
+    let (outcomes, _) = value(&appraisal, catalogue)?;
+    Ok(Some(Valued { why: Why::Companion, appraisal, outcomes }))
+}
+
+fn side(valued: &Valued) -> Side {
+    let npv: Vec<f64> = valued.outcomes.iter().map(|outcome| outcome.totals().npv).collect();
+    let rank = |own: f64| 1 + npv.iter().filter(|other| **other > own).count();
+    let standings: Vec<Standing> = valued
+        .outcomes
+        .iter()
+        .map(|outcome| Standing {
+            basis: outcome.basis.canonical(),
+            totals: *outcome.totals(),
+            rank: rank(outcome.totals().npv),
+        })
+        .collect();
+    let first: Vec<usize> = (0..npv.len()).filter(|&i| standings[i].rank == 1).collect();
+    let distinct = |text: &dyn Fn(&ChoiceOutcome) -> String| {
+        let mut texts: Vec<String> = Vec::new();
+        for outcome in &valued.outcomes {
+            let text = text(outcome);
+            if !texts.contains(&text) {
+                texts.push(text);
+            }
+        }
+        texts.join("; or ")
+    };
+    Side {
+        why: valued.why,
+        basis: distinct(&|outcome| outcome.basis.canonical()),
+        words: distinct(&|outcome| outcome.basis.words()),
+        standings,
+        best: if first.len() == 1 { first.first().copied() } else { None },
+    }
+}
