@@ -12,6 +12,7 @@ mod catalogue;
 mod check;
 mod curve;
 mod dd;
+mod derivation;
 mod error;
 mod evidence;
 mod growth;
@@ -32,6 +33,9 @@ pub use basis::{Basis, CAUTION, PriceBasis};
 pub use calendar::{DayCount, offset_of_dates, parse_financial_year, years_after_base};
 pub use catalogue::Catalogue;
 pub use curve::{Curve, Domain, Parts};
+pub use derivation::{
+    Derivation, ElasticitySource, Figure, FigureKind, GrowthBy, GrowthSource, Hazard, RateParts, Stated,
+};
 pub use error::{Error, ErrorKind, Result};
 pub use evidence::{
     TaxBracket, elasticity_from_tax_brackets, elasticity_from_taxes, equity_weight, hazard_from_probability,
@@ -45,7 +49,7 @@ pub use measures::{
     present_values, undiscounted_total,
 };
 pub use prices::{nominal_rate, real_flows, real_flows_by_inflation, real_rate};
-pub use rateline::{RateLine, distance, percent};
+pub use rateline::{RateLine, distance, parse_number, parse_percentage, percent};
 pub use schedule::{Schedule, ScheduleStatus};
 pub use spec::{Band, Compounding, Edge, GrowthState, HorizonRule, Persistence, Spec, Where};
 pub use sum::{ExactSum, dot, sum};

@@ -158,6 +158,42 @@ pub struct Where {
 }
 
 impl Spec {
+    /// The spec with every rate moved by as much: flat, band and whole-horizon rates, the preference of a Ramsey rule, the
+    /// components of a mixture. None for gamma-distributed rates and tables, which state no rate that could be moved.
+    ///
+    /// **Arguments**: `by`, a fraction per year: 0.01 is a point more. Whether the rates stay in their range is
+    /// [`Spec::curve`]'s to say.
+    ///
+    /// ```
+    /// let line = hence_core::RateLine::parse("3.5% to 30, 3% after")?;
+    /// assert_eq!(line.spec().shifted(0.01).unwrap().to_string(), "4.5% to 30, 4% after");
+    /// # Ok::<(), hence_core::Error>(())
+    /// ```
+    pub fn shifted(&self, by: f64) -> Option<Spec> {
+        // Without the noise that a sum of decimals leaves.
+        let moved = |rate: f64| ((rate + by) * 1e15).round() / 1e15;
+        let mut spec = self.clone();
+        match &mut spec {
+            Spec::Flat { rate, .. } => *rate = moved(*rate),
+            Spec::Bands { bands, .. } | Spec::HorizonSteps { bands, .. } => {
+                bands.iter_mut().for_each(|band| band.value = moved(band.value));
+            }
+            Spec::HorizonPoints { points, .. } => {
+                points.iter_mut().for_each(|point| point.1 = moved(point.1));
+            }
+            Spec::Ramsey { preference, .. }
+            | Spec::UncertainGrowth { preference, .. }
+            | Spec::GrowthRegimes { preference, .. } => *preference = moved(*preference),
+            Spec::Mixture(components) => {
+                for (_, component) in components {
+                    *component = component.shifted(by)?;
+                }
+            }
+            Spec::Gamma { .. } | Spec::Table(_) => return None,
+        }
+        Some(spec)
+    }
+
     /// Whether a rate line can state it. A table of factors, growth in states, and growth that departs from its mean
     /// at the base live in schedule files only.
     pub fn fits_a_line(&self) -> bool {

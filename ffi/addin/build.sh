@@ -4,7 +4,7 @@ set -euo pipefail
 cd "$(dirname "$0")/../.."
 
 case "${1:-}" in
-  calc | excel) exec bash "ffi/addin/$1/build.sh" ;;
+  calc | excel) exec bash "ffi/addin/$1/build.sh" "${@:2}" ;;
   *)
     echo "build: found \"${1:-}\", allowed: calc, excel" >&2
     exit 2

@@ -49,6 +49,8 @@ pub enum Command {
     Compare(Compare),
     /// Print the factors and rates of a curve
     Curve(Curve),
+    /// Build a Ramsey rate from its parts, and show where every figure comes from
+    Rate(Rate),
     /// List the schedules, or print one with its source
     Schedules(Schedules),
     /// List the roles that a workbook's names declare, or suggest names for one that has none
@@ -172,6 +174,72 @@ pub struct Curve {
     /// Print one JSON document
     #[arg(long)]
     pub json: bool,
+}
+
+#[derive(Debug, Args)]
+#[command(group = clap::ArgGroup::new("whose_elasticity").args(["elasticity", "taxes"]).required(true))]
+#[command(group = clap::ArgGroup::new("whose_growth").args(["growth", "growth_from"]).required(true))]
+pub struct Rate {
+    /// Pure time preference: 0.5%
+    #[arg(long, value_name = "RATE")]
+    pub preference: String,
+    /// Hazard, the chance that all ends: a rate, a yearly probability ("probability 1%") or an expected waiting
+    /// time ("every 100 years")
+    #[arg(long, value_name = "HAZARD", default_value = "0%", hide_default_value = true)]
+    pub hazard: String,
+    /// Elasticity of marginal utility: 1.5
+    #[arg(long, value_name = "NUMBER")]
+    pub elasticity: Option<String>,
+    /// Elasticity from the marginal and the average rate of tax on an income, by equal absolute sacrifice: 40%,25%;
+    /// given for several brackets, each with its weight, the weighted mean
+    #[arg(long = "elasticity-from-tax", value_name = "MARGINAL,AVERAGE[,WEIGHT]")]
+    pub taxes: Vec<String>,
+    /// Growth of real consumption per head: 2%
+    #[arg(long, value_name = "RATE")]
+    pub growth: Option<String>,
+    /// Growth estimated from a series of real consumption per head in a workbook: plan.xlsx!Data!B2:B40, or a
+    /// defined name in place of the cells; of two columns or rows the first holds the years
+    #[arg(long, value_name = "BOOK!CELLS", allow_hyphen_values = true)]
+    pub growth_from: Option<String>,
+    /// Which estimate counts as growth
+    #[arg(long, value_name = "ESTIMATE", default_value = "trend", requires = "growth_from")]
+    pub growth_by: GrowthBy,
+    /// Standard deviation of yearly growth (with --persistence of its yearly shock): 3.6%, or `estimated`
+    #[arg(long, value_name = "RATE")]
+    pub sd: Option<String>,
+    /// First-order persistence of log growth: 0.7, or `estimated`
+    #[arg(long, value_name = "NUMBER", requires = "sd")]
+    pub persistence: Option<String>,
+    /// Growth and its standard deviation are those of log growth
+    #[arg(long, requires = "sd")]
+    pub log: bool,
+    /// Compound continuously (log growth always is)
+    #[arg(long)]
+    pub continuous: bool,
+    /// Round estimated figures to so many decimals, rates as percentages
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u8).range(0..=12))]
+    pub decimals: Option<u8>,
+    /// Write the rate as a schedule file of your own (.toml), called by the file's name; - for standard output
+    #[arg(long, value_name = "FILE")]
+    pub schedule: Option<PathBuf>,
+    /// The year to cite the schedule file by (else this year)
+    #[arg(long, requires = "schedule")]
+    pub year: Option<i32>,
+    /// Print one JSON document
+    #[arg(long)]
+    pub json: bool,
+    /// Replace an existing schedule file
+    #[arg(long)]
+    pub force: bool,
+}
+
+/// Which estimate of a series is its growth.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+pub enum GrowthBy {
+    /// The log-linear trend, by least squares
+    Trend,
+    /// The mean, from the first value to the last
+    Mean,
 }
 
 #[derive(Debug, Args)]

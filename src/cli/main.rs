@@ -91,6 +91,7 @@ fn run(cli: &Cli, terminal: &Terminal) -> Result<Outcome, Failure> {
         Command::Check(check) => commands::check::run(check, &cli.schedules, terminal),
         Command::Compare(compare) => commands::compare::run(compare, &cli.schedules, terminal),
         Command::Curve(curve) => commands::curve::run(curve, &cli.schedules, terminal),
+        Command::Rate(rate) => commands::rate::run(rate, terminal),
         Command::Schedules(schedules) => commands::schedules::run(schedules, &cli.schedules),
         Command::Names(names) => commands::names::run(names, terminal),
         Command::Start(start) => commands::start::run(start, terminal),

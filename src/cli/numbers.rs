@@ -41,7 +41,7 @@ pub fn count(n: usize, thing: &str) -> String {
 pub fn percent(x: f64) -> String {
     let text = format!("{:.4}", x * 100.0);
     let text = text.trim_end_matches('0').trim_end_matches('.');
-    format!("{text}%")
+    format!("{}%", if text == "-0" { "0" } else { text })
 }
 
 #[cfg(test)]
@@ -56,7 +56,7 @@ mod tests {
         assert_eq!(money(1000.0), "1,000");
         assert_eq!(percent(0.035), "3.5%");
         assert_eq!(percent(0.1), "10%");
-        assert_eq!(percent(0.0), "0%");
+        assert_eq!((percent(0.0), percent(-0.0), percent(-1e-9)), ("0%".into(), "0%".into(), "0%".into()));
         assert_eq!((count(1, "cell"), count(0, "cell")), ("1 cell".into(), "0 cells".into()));
     }
 

@@ -181,6 +181,8 @@ pub const CODES: &[Code] = codes! {
         "curve-note": "A remark on the curve, such as a jump of the factor at an edge.",
         "no-basis-cell": "No cell states the basis, so a new one stands on the audit sheets alone.",
         "one-cell": "A setting covers several cells, where one is allowed.",
+        "series-gap": "A series that growth is estimated from has a blank cell.",
+        "series-shape": "A series that growth is estimated from is not one row or column, or two with the years first.",
         "signs": "The text does not say which flows are negative.",
         "text-expected": "A setting holds a number or another value, where a text is allowed.",
         "timing-differs": "The timing cell and the basis give different timings; the cell counts.",
@@ -280,6 +282,6 @@ pub const CODES: &[Code] = codes! {
         "syntax": "A text, such as a rate line, does not follow its grammar.",
         "unknown-schedule": "No schedule of that id is known.",
         "unsupported": "This version does not offer what was asked for.",
-        "weights": "The weights of a mixture do not sum to 1, or one is negative.",
+        "weights": "Weights, or chances, do not sum to 1 as they should, or one is negative.",
     }
 };

@@ -17,7 +17,8 @@ use crate::valuation::{from_core, value};
 
 pub use tables::{book, change_words, heading, note, shown, words};
 
-pub use search::{Change, Entry, MULTIPLIERS, Moved, ramsey_basis, search};
+pub use search::{Change, Entry, MULTIPLIERS, Moved};
+use search::{npv_at, ramsey_basis, search};
 
 /// What takes part in a comparison, besides what the workbook declares.
 #[derive(Clone, Debug, Default)]
@@ -103,14 +104,13 @@ impl Comparison {
     }
 }
 
-/// Values a workbook valued on one basis.
-pub struct Valued {
-    /// Why it takes part.
-    pub why: Why,
-    /// The workbook with that basis in it.
-    pub appraisal: Appraisal,
+/// A workbook valued on one basis.
+struct Valued {
+    why: Why,
+    /// With that basis in it.
+    appraisal: Appraisal,
     /// One an option.
-    pub outcomes: Vec<ChoiceOutcome>,
+    outcomes: Vec<ChoiceOutcome>,
 }
 
 /// Compares the options of one workbook; nothing is written.
@@ -122,15 +122,59 @@ pub fn compare(package: &Package, request: &CompareRequest, catalogue: &Catalogu
     let book = Workbook::read(package)?;
     let mut appraisal = resolve(package, &book, &Options { roles: &request.roles, basis: None })?;
     problems.append(&mut appraisal.problems);
-    let valued = value_all(appraisal, &request.against, catalogue, &mut problems)?;
+    let (outcomes, found) = value(&appraisal, catalogue)?;
+    problems.extend(found);
+    let declared = Valued { why: Why::Declared, appraisal, outcomes };
+    let valued = value_all(declared, &request.against, catalogue, &mut problems)?;
     Ok(comparison(&valued, problems))
 }
 
+/// What the audit sheets tell of other rates.
+#[derive(Clone, Debug)]
+pub struct Sensitivity {
+    /// The options under each basis, and where the decision switches.
+    pub comparison: Comparison,
+    /// Points added to every rate of the declared basis, and what every option then comes to; none where the basis is not
+    /// made of rates, or they would leave their range.
+    pub shifted: Vec<(f64, Option<Vec<f64>>)>,
+}
+
+/// What every rate is moved by for the sensitivity table.
+const SHIFTS: [f64; 2] = [-0.01, 0.01];
+
+/// The comparison of a workbook that has been valued on its declared basis, and that basis moved.
+///
+/// # Errors
+/// A basis asked for cannot value the workbook.
+pub fn sensitivity(
+    appraisal: &Appraisal,
+    outcomes: &[ChoiceOutcome],
+    against: &[String],
+    catalogue: &Catalogue,
+) -> Result<Sensitivity> {
+    let declared = Valued { why: Why::Declared, appraisal: appraisal.clone(), outcomes: outcomes.to_vec() };
+    // What the companion cannot do has been said where it is reported.
+    let mut problems = Vec::new();
+    let valued = value_all(declared, against, catalogue, &mut problems)?;
+    let moved = |by: f64| {
+        let npv = npv_at(&valued[0], &|spec| spec.shifted(by))?;
+        let base = appraisal.baseline.map_or(0.0, |baseline| npv[baseline]);
+        Some(npv.into_iter().map(|npv| npv - base).collect())
+    };
+    let shifted = SHIFTS.map(|by| (by, moved(by))).to_vec();
+    problems.retain(|problem| problem.code != "companion");
+    Ok(Sensitivity { comparison: comparison(&valued, problems), shifted })
+}
+
+/// With more options than so many, they are held against zero (or the baseline) alone, not against each other.
+const MOST_PAIRED: usize = 24;
+
 /// The comparison of a workbook valued on every basis, the declared one first.
-pub(crate) fn comparison(valued: &[Valued], problems: Vec<Problem>) -> Comparison {
+fn comparison(valued: &[Valued], problems: Vec<Problem>) -> Comparison {
     let declared = &valued[0];
     let ramsey = ramsey_basis(valued);
-    let (switching, changes) = search(declared, ramsey);
+    let pairs = declared.outcomes.len() <= MOST_PAIRED;
+    let (switching, changes) = search(declared, ramsey, pairs);
     Comparison {
         options: declared.appraisal.choices.iter().map(|choice| choice.name.clone()).collect(),
         baseline: declared.appraisal.baseline,
@@ -143,15 +187,13 @@ pub(crate) fn comparison(valued: &[Valued], problems: Vec<Problem>) -> Compariso
 }
 
 /// The workbook on its declared basis, on the companion of that, and on every basis asked for; each once.
-pub(crate) fn value_all(
-    appraisal: Appraisal,
+fn value_all(
+    declared: Valued,
     against: &[String],
     catalogue: &Catalogue,
     problems: &mut Vec<Problem>,
 ) -> Result<Vec<Valued>> {
-    let (outcomes, found) = value(&appraisal, catalogue)?;
-    problems.extend(found);
-    let mut valued = vec![Valued { why: Why::Declared, appraisal, outcomes }];
+    let mut valued = vec![declared];
     match beside(&valued[0], catalogue) {
         Ok(companion) => valued.extend(companion),
         Err(error) => {

@@ -1,5 +1,6 @@
 //! The add-ins: the function table, a real LibreOffice, and a stand-in host for Excel under Wine.
 
+mod calc;
 mod functions;
 mod table;
 

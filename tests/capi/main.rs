@@ -6,6 +6,7 @@ mod install;
 mod layout;
 mod library;
 mod loaded;
+mod readme;
 mod reference;
 mod symbols;
 mod threads;

@@ -9,6 +9,7 @@ mod fill;
 mod help;
 mod names;
 mod outputs;
+mod rate;
 mod readme;
 mod schedules;
 mod start;

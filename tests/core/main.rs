@@ -4,6 +4,7 @@ mod accuracy;
 mod basis;
 mod calendar;
 mod curves;
+mod evidence;
 mod exact;
 mod growth;
 mod irr;

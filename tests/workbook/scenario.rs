@@ -202,8 +202,25 @@ fn offset(case: &Case, label: &Label) -> f64 {
     }
 }
 
+/// The built-in schedules, and two of growth that no rate line can state.
+pub fn catalogue() -> Catalogue {
+    let file = |id: &str, curve: &str| {
+        let text = format!(
+            "id = \"{id}\"\ntitle = \"Growth made up for a test\"\nbody = \"Ostrey Rivers Board\"\nyear = 2026\n\
+             place = \"rule 5\"\naddress = \"\"\nstatus = \"current\"\ncomplete = true\nchecked = \"invented\"\n{curve}"
+        );
+        (format!("{id}.toml"), text)
+    };
+    let states = "[regimes]\npreference = 0.01\nhazard = 0.002\nelasticity = 1.5\nstart = [0.7, 0.2, 0.1]\n\
+                  states = [{ mean = 0.03, sd = 0.02 }, { mean = -0.01, sd = 0.03 }, { mean = 0.05, sd = 0 }]\n\
+                  transition = [[0.9, 0.05, 0.05], [0.3, 0.6, 0.1], [0.25, 0.25, 0.5]]\n";
+    let low = "[persistent_growth]\npreference = 0.005\nelasticity = 2\nmean = 0.02\nsd = 0.015\n\
+               persistence = 0.6\nstart = -0.04\n";
+    Catalogue::builtin().with(&[file("ostrey-states", states), file("ostrey-low", low)]).expect("schedules")
+}
+
 pub fn outcomes(case: &Case, appraisal: &Appraisal) -> Vec<ChoiceOutcome> {
-    let basis = Basis::parse(case.basis, &Catalogue::builtin()).unwrap();
+    let basis = Basis::parse(case.basis, &catalogue()).unwrap();
     let mut all: Vec<ChoiceOutcome> =
         appraisal.choices.iter().map(|c| outcome(case, appraisal, c, &basis)).collect();
     let base = all[0].absolute;

@@ -67,6 +67,22 @@ fn cases() -> Vec<Case> {
             true,
         ),
         case("preference 1%, elasticity 2, growth 2% sd 3.6%", END, Labels::Years, Across, true),
+        case(
+            "preference 1%, elasticity 2, log growth 2% sd 2% persistence 0.5",
+            MIDDLE,
+            Labels::Years,
+            Across,
+            true,
+        ),
+        case(
+            "0.5 of (preference 1%, elasticity 2, log growth 2% sd 2% persistence -0.3), 0.5 of (3% to 9, 2% after)",
+            END,
+            Labels::Years,
+            Down,
+            true,
+        ),
+        case("ostrey-states", AVERAGED, Labels::Financial, Down, true),
+        case("ostrey-low", END, Labels::Numbers, Across, false),
         case("gamma mean 4% sd 3%", MIDDLE, Labels::Years, Across, true),
         case("0.5 of (1%), 0.5 of (7% continuous)", END, Labels::Years, Down, false),
         case(

@@ -5,6 +5,7 @@ pub mod compare;
 pub mod curve;
 pub mod fill;
 pub mod names;
+pub mod rate;
 pub mod schedules;
 pub mod start;
 

@@ -65,7 +65,7 @@ pub struct Change {
 }
 
 /// The first basis that is stated by preference, elasticity and growth, and is that of all options.
-pub fn ramsey_basis(valued: &[Valued]) -> Option<&Valued> {
+pub(super) fn ramsey_basis(valued: &[Valued]) -> Option<&Valued> {
     valued.iter().find(|valued| {
         let first = &valued.outcomes[0].basis;
         let same = valued.outcomes.iter().all(|outcome| outcome.basis == *first);
@@ -75,11 +75,11 @@ pub fn ramsey_basis(valued: &[Valued]) -> Option<&Valued> {
 
 /// Every entry, and where the best option changes. The rate and the multipliers are searched with the flows as the
 /// declared basis dates them, the other parameters with those of the Ramsey basis.
-pub fn search(declared: &Valued, ramsey: Option<&Valued>) -> (Vec<Entry>, Vec<Change>) {
+pub(super) fn search(declared: &Valued, ramsey: Option<&Valued>, pairs: bool) -> (Vec<Entry>, Vec<Change>) {
     let count = declared.outcomes.len();
     let mut entries = Vec::new();
     for option in 0..count {
-        let others = (0..count).filter(|other| *other != option).map(Some);
+        let others = (0..count).filter(|other| pairs && *other != option).map(Some);
         for other in std::iter::once(None).chain(others) {
             for parameter in Parameter::ALL {
                 // Where two options swap does not depend on which is named first.
@@ -98,6 +98,9 @@ pub fn search(declared: &Valued, ramsey: Option<&Valued>) -> (Vec<Entry>, Vec<Ch
                 entries.push(multiplier(declared, option, other, stream));
             }
         }
+    }
+    if !pairs {
+        return (entries, Vec::new());
     }
     let changes = Parameter::ALL
         .into_iter()
@@ -201,7 +204,7 @@ fn cancelling(endless: &[hence_core::Endless]) -> Option<(usize, usize)> {
 }
 
 /// A stream's present value with its sign in the net.
-pub(super) fn signed(stream: &Stream, pv: f64) -> f64 {
+fn signed(stream: &Stream, pv: f64) -> f64 {
     let (above, below) = side(stream.kind);
     (above - below) * pv
 }
@@ -272,13 +275,13 @@ fn best_changes(valued: &Valued, entries: &[Entry], parameter: Parameter) -> Vec
 }
 
 /// The best option with a parameter of the basis at a value; none where several are, or where no curve has that value.
-pub(crate) fn best_at(valued: &Valued, parameter: Parameter, x: f64) -> Option<usize> {
+fn best_at(valued: &Valued, parameter: Parameter, x: f64) -> Option<usize> {
     let npv = npv_at(valued, &|spec| parameter.at(spec, x))?;
     best_of(&npv)
 }
 
 /// The index of the largest; none where several are.
-pub(crate) fn best_of(npv: &[f64]) -> Option<usize> {
+pub(super) fn best_of(npv: &[f64]) -> Option<usize> {
     let most = npv.iter().copied().fold(f64::NEG_INFINITY, f64::max);
     let mut first = npv.iter().enumerate().filter(|(_, npv)| **npv == most).map(|(i, _)| i);
     match (first.next(), first.next()) {
@@ -288,7 +291,7 @@ pub(crate) fn best_of(npv: &[f64]) -> Option<usize> {
 }
 
 /// Net present values as the options stand, their spec changed.
-pub(crate) fn npv_at(valued: &Valued, change: &dyn Fn(&Spec) -> Option<Spec>) -> Option<Vec<f64>> {
+pub(super) fn npv_at(valued: &Valued, change: &dyn Fn(&Spec) -> Option<Spec>) -> Option<Vec<f64>> {
     let choices = valued.appraisal.choices.iter().zip(&valued.outcomes);
     choices
         .map(|(choice, outcome): (&Choice, &ChoiceOutcome)| {

@@ -5,6 +5,7 @@ mod charts;
 mod checks;
 mod coverage;
 mod discounting;
+mod growth_route;
 mod lines;
 mod offsets;
 pub(crate) mod own;
