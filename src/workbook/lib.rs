@@ -4,11 +4,13 @@
 //! here is where they are read from, where they go, and the proof that comes with them.
 
 pub mod appraisal;
+pub mod brief;
 pub mod check;
 mod clock;
 pub mod codes;
 mod companions;
 pub mod compare;
+mod drawing;
 pub mod fill;
 mod follow;
 pub mod formulas;
