@@ -46,11 +46,6 @@ fn basis(facts: &Facts<'_>) -> &'static str {
     if facts.one_basis() { "On the declared basis" } else { "On the basis declared for each" }
 }
 
-/// The words for what nothing is measured against: zero, or the baseline.
-fn zero(facts: &Facts<'_>) -> String {
-    facts.baseline().map_or_else(|| "zero".to_owned(), |i| format!("that of {}", facts.name(i)))
-}
-
 fn alone(facts: &Facts<'_>, option: usize) -> Vec<String> {
     let (name, npv, over) = (facts.name(option), money(facts.npv(option)), facts.over());
     let what = match sign(facts, option) {
@@ -84,22 +79,24 @@ fn best(facts: &Facts<'_>, first: usize, second: usize) -> Vec<String> {
         money(facts.npv(second))
     );
     let mut texts = vec![match none_above(facts, first) {
-        Some(none) => format!("{none} The highest is that of {name}: {npv}. {next}"),
+        Some(none) => format!("{none} The highest{over} is that of {name}: {npv}. {next}"),
         None => format!("{} {name} has the highest net present value{over}: {npv}. {next}", basis(facts)),
     }];
     texts.extend(ratio(facts, first).filter(|_| sign(facts, first) > 0));
     texts
 }
 
-/// That no option is above zero, where the highest is not.
+/// That no option is above zero (or the baseline), where the highest is not.
 fn none_above(facts: &Facts<'_>, highest: usize) -> Option<String> {
-    match sign(facts, highest) {
-        1 => None,
-        0 => Some(format!("{} no option has a net present value above {}.", basis(facts), zero(facts))),
-        _ => Some(format!("{} every option has a net present value below {}.", basis(facts), zero(facts))),
-    }
+    let words = match (sign(facts, highest), facts.baseline()) {
+        (1, _) => return None,
+        (0, None) => "no option has a net present value above zero".to_owned(),
+        (0, Some(i)) => format!("no option has a higher net present value than {}", facts.name(i)),
+        (_, None) => "every option has a net present value below zero".to_owned(),
+        (_, Some(i)) => format!("every option has a lower net present value than {}", facts.name(i)),
+    };
+    Some(format!("{} {words}.", basis(facts)))
 }
-
 fn ratio(facts: &Facts<'_>, option: usize) -> Option<String> {
     let totals = facts.options[option].totals();
     totals.ratio.map(|x| {

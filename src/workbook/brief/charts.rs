@@ -16,9 +16,22 @@ pub(super) fn section(facts: &Facts<'_>) -> Section {
     let figures: Vec<Figure> = [by_option(facts), by_rate(facts)].into_iter().flatten().collect();
     let blocks = match figures.is_empty() {
         true => vec![Block::Paragraph("The numbers are too large or too small to be drawn.".to_owned())],
-        false => vec![Block::Figures(figures)],
+        false => std::iter::once(Block::Figures(figures)).chain(left_out(facts)).collect(),
     };
     Section { title: "In pictures".to_owned(), blocks, beside: None }
+}
+
+/// That not every option is drawn.
+fn left_out(facts: &Facts<'_>) -> Option<Block> {
+    let options = facts.ranked().len();
+    let told = |most: usize| if options > most { most } else { options };
+    (options > MOST_LINES).then(|| {
+        Block::Paragraph(format!(
+            "Of {options} options, the first chart shows the {} with the highest net present value, the second {}.",
+            told(MOST_BARS),
+            told(MOST_LINES)
+        ))
+    })
 }
 
 fn can_be_drawn(mut values: impl Iterator<Item = f64>) -> bool {
@@ -42,11 +55,7 @@ fn by_option(facts: &Facts<'_>) -> Option<Figure> {
     let (options, note) = drawn(facts, MOST_BARS);
     let list_of: Vec<Bar> = options
         .iter()
-        .map(|&i| Bar {
-            name: words::plain(&facts.options[i].name),
-            value: facts.npv(i),
-            label: money(facts.npv(i)),
-        })
+        .map(|&i| Bar { name: facts.label(i), value: facts.npv(i), label: money(facts.npv(i)) })
         .collect();
     if list_of.is_empty() || !can_be_drawn(list_of.iter().map(|bar| bar.value)) {
         return None;
@@ -69,7 +78,7 @@ fn by_rate(facts: &Facts<'_>) -> Option<Figure> {
         .map(|&i| {
             let points = flat.rates.iter().zip(&flat.values[i]).skip(from);
             Line {
-                name: words::plain(&facts.options[i].name),
+                name: facts.label(i),
                 points: points.filter_map(|(rate, value)| value.map(|value| (*rate, value))).collect(),
             }
         })
@@ -124,7 +133,7 @@ fn rate_table(facts: &Facts<'_>, options: &[usize], title: &str) -> Table {
     headings.extend(wanted.iter().map(|&k| parameter_value(Parameter::Rate, flat.rates[k])));
     let rows = options.iter().map(|&i| {
         let values = wanted.iter().map(|&k| flat.values[i][k].map_or_else(|| "none".to_owned(), money));
-        std::iter::once(words::plain(&facts.options[i].name)).chain(values).collect()
+        std::iter::once(facts.label(i)).chain(values).collect()
     });
     Table { caption: title.to_owned(), headings, words: 1, rows: rows.collect() }
 }

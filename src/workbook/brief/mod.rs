@@ -146,6 +146,17 @@ impl Facts<'_> {
         words::quoted(&self.options[option].name)
     }
 
+    /// The name without quotes, for tables and charts; with its number before it where the beginnings of names do not
+    /// tell the options apart.
+    fn label(&self, option: usize) -> String {
+        const BEGINNING: usize = 12;
+        let begins =
+            |i: usize| -> String { words::plain(&self.options[i].name).chars().take(BEGINNING).collect() };
+        let alike = (0..self.options.len()).any(|i| (0..i).any(|j| begins(i) == begins(j)));
+        let name = words::plain(&self.options[option].name);
+        if alike { format!("{}. {name}", option + 1) } else { name }
+    }
+
     fn npv(&self, option: usize) -> f64 {
         self.options[option].totals().npv
     }

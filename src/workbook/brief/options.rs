@@ -3,7 +3,7 @@
 use hence_core::Eras;
 
 use super::words::{money, ratio, share};
-use super::{Block, Facts, Section, Table, words};
+use super::{Block, Facts, Section, Table};
 use crate::sheets::era_words;
 
 /// The section.
@@ -32,9 +32,9 @@ fn totals(facts: &Facts<'_>) -> Table {
         "Rank",
     ];
     let standings = &facts.found.comparison.sides[0].standings;
-    let rows = facts.options.iter().zip(standings).map(|(option, standing)| {
+    let rows = facts.options.iter().zip(standings).enumerate().map(|(i, (option, standing))| {
         let totals = option.totals();
-        let name = words::plain(&option.name);
+        let name = facts.label(i);
         vec![
             if option.baseline { format!("{name} (baseline)") } else { name },
             money(totals.pv_benefits),
@@ -71,8 +71,8 @@ fn eras(facts: &Facts<'_>) -> Table {
     let mut headings = vec!["Option".to_owned()];
     headings.extend((0..=edges.len()).map(|k| in_capitals(&era_words(&edges, k))));
     headings.push("Mean time".to_owned());
-    let rows = facts.options.iter().map(|option| {
-        let mut row = vec![words::plain(&option.name)];
+    let rows = facts.options.iter().enumerate().map(|(i, option)| {
+        let mut row = vec![facts.label(i)];
         row.extend(
             (0..=edges.len()).map(|k| option.era_shares.get(k).map_or_else(|| "-".to_owned(), |x| share(*x))),
         );

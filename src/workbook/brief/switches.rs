@@ -67,18 +67,53 @@ fn over_parameter(facts: &Facts<'_>, parameter: Parameter) -> String {
     let open = pairs.iter().any(|entry| !entry.unresolved.is_empty() || searched_not(entry));
     let reserve = if open { "; for some options not every switching value could be settled" } else { "" };
     let text = match changes.as_slice() {
-        [] => match facts.flat.always_best().filter(|_| parameter == Parameter::Rate) {
-            Some(best) => format!(
-                "{} has the highest net present value at every {word} from {interval}",
-                facts.name(best)
-            ),
-            None => format!(
-                "no {word} from {interval} makes another option the one with the highest net present value"
-            ),
-        },
+        [] => no_change(facts, parameter, &word, &pairs, &interval),
         changes => chain(facts, parameter, changes) + &format!(" (searched: {interval})"),
     };
     format!("{told}, {text}{reserve}.")
+}
+
+/// That the highest net present value stays with one option, or what is known where that cannot be said.
+fn no_change(
+    facts: &Facts<'_>,
+    parameter: Parameter,
+    word: &str,
+    pairs: &[&Entry],
+    interval: &str,
+) -> String {
+    let comparison = &facts.found.comparison;
+    let best = match (parameter, &comparison.ramsey) {
+        (Parameter::Rate, _) => facts.flat.always_best(),
+        (_, Some(basis)) => {
+            comparison.sides.iter().find(|side| side.basis == *basis).and_then(|side| side.best)
+        }
+        _ => None,
+    };
+    let Some(best) = best else {
+        return format!(
+            "no {word} from {interval} was found at which the highest net present value passes to another option"
+        );
+    };
+    // Where it equals another and yet nothing is known beyond, the basis has no curve there.
+    let equal: Vec<String> = pairs
+        .iter()
+        .filter(|entry| entry.option == best && !entry.values.is_empty())
+        .filter_map(|entry| {
+            let values: Vec<String> = entry.values.iter().map(|x| parameter_value(parameter, *x)).collect();
+            Some(format!("{} at {}", facts.name(entry.against?), words::list(&values, "and")))
+        })
+        .collect();
+    if equal.is_empty() {
+        return format!(
+            "{} has the highest net present value at every {word} from {interval}",
+            facts.name(best)
+        );
+    }
+    format!(
+        "the net present value of {} equals that of {}; which is the highest beyond was not settled",
+        facts.name(best),
+        words::list(&equal, "and")
+    )
 }
 
 /// Whether a pair was left unsearched for a reason that leaves the matter open.
@@ -166,7 +201,9 @@ fn shifted(facts: &Facts<'_>) -> Option<String> {
         let unit = if points == "1" { "point" } else { "points" };
         let highest =
             if npv.len() > 1 { "the highest net present value is" } else { "the net present value is" };
-        format!("{points} {unit} {way}, {highest} {}, that of {}", money(most), words::list(&best, "and"))
+        let whose =
+            if npv.len() > 1 { format!(", that of {}", words::list(&best, "and")) } else { String::new() };
+        format!("{points} {unit} {way}, {highest} {}{whose}", money(most))
     };
     let told: Vec<String> =
         facts.found.shifted.iter().filter_map(|(by, npv)| npv.as_ref().map(|npv| tell(*by, npv))).collect();

@@ -29,7 +29,8 @@ const DASHES: [&str; 6] = ["", "7 3", "2 3", "9 3 2 3", "14 4", "3 7"];
 /// A line chart. `percent` labels the horizontal axis in percent.
 pub(crate) fn lines(frame: &Frame<'_>, lines: &[Line], percent: bool) -> String {
     let points = || lines.iter().flat_map(|line| &line.points);
-    let ys = Ticks::over(points().map(|p| p.1), 5.0);
+    // From zero, or to it: what is below it, and how far, is to be seen.
+    let ys = Ticks::over(points().map(|p| p.1).chain([0.0]), 5.0);
     let widest = |texts: &mut dyn Iterator<Item = String>| texts.map(|t| width(&t)).fold(0.0, f64::max);
     let left = GAP * 2.0 + widest(&mut ys.all().iter().map(|tick| ys.label(*tick)));
     // A line that is alone is told by the title.

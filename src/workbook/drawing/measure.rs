@@ -37,8 +37,8 @@ pub(super) fn in_two(text: &str, most: f64) -> Vec<String> {
     if width(text) <= most {
         return vec![text.to_owned()];
     }
-    let breaks = text.char_indices().filter(|(_, c)| c.is_whitespace()).map(|(at, _)| at);
-    match breaks.filter(|&at| at > 0 && width(&text[..at]) <= most).last() {
+    let mut breaks = text.char_indices().filter(|(_, c)| c.is_whitespace()).map(|(at, _)| at);
+    match breaks.rfind(|&at| at > 0 && width(&text[..at]) <= most) {
         Some(at) => vec![text[..at].to_owned(), fitted(text[at..].trim_start(), most)],
         None => vec![fitted(text, most)],
     }
