@@ -1,7 +1,8 @@
 /* The C interface of hence: discount factors, rates and present values.
  *
  * Made by cbindgen from the Rust source; not edited by hand. A function returns a status, HENCE_OK (0) when it is done,
- * and leaves its outputs untouched otherwise. The rate to use is set by the body that funds or reviews the appraisal. */
+ * and leaves its outputs untouched otherwise; an output may overlap no other argument. The rate to use is set by the body
+ * that funds or reviews the appraisal. */
 
 #ifndef HENCE_H
 #define HENCE_H
@@ -40,10 +41,10 @@
 // A pointer is not aligned for its type.
 #define HENCE_ERR_ALIGNMENT 11
 
-// A length is above HENCE_LENGTH_MAX.
+// A length is above HENCE_LENGTH_MAX, or there is no memory for as many results.
 #define HENCE_ERR_LENGTH 12
 
-// Output and input overlap.
+// An output overlaps an input or another output.
 #define HENCE_ERR_OVERLAP 13
 
 // The caller's buffer is too small.
@@ -105,7 +106,8 @@ typedef struct {
   const char *const *texts;
 } hence_range;
 
-// What went wrong, written into the caller's own struct. Nothing in it is allocated or freed.
+// What went wrong, written into the caller's own struct, which may overlap no other argument. Nothing in it is
+// allocated or freed.
 typedef struct {
   // In: sizeof(hence_error), set by the caller. A smaller size gets only the fields that fit.
   uint32_t struct_size;
@@ -113,7 +115,8 @@ typedef struct {
   int32_t code;
   // Out: the argument it is about, counted from 1; 0 where it is about none.
   int32_t argument;
-  // Out: the index within that argument, or the character within a text; -1 where there is none.
+  // Out: the index within that argument, from 0; within a text the character (HENCE_ERR_UTF8: the byte); what is needed
+  // (HENCE_ERR_CAPACITY); -1 where there is none.
   int64_t index;
   // Out: the message, UTF-8, always ended by NUL, cut at a character.
   char message[256];
@@ -153,7 +156,7 @@ void hence_answer_free(hence_answer *answer);
 // The numbers of rows and columns of an answer.
 //
 // Arguments: `answer` (in, not NULL); `rows`, `columns` (out, not NULL, both at least 1); `error` (out, may be NULL).
-// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT. Threads: any.
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_OVERLAP. Threads: any.
 int32_t hence_answer_shape(const hence_answer *answer,
                            size_t *rows,
                            size_t *columns,
@@ -164,8 +167,8 @@ int32_t hence_answer_shape(const hence_answer *answer,
 // Arguments: `answer` (in, not NULL); `numbers` (out, `n` doubles): the number of a cell, the ERROR.TYPE number of an
 // error value, 0 for a text; `kinds` (out, `n` bytes): HENCE_CELL_NUMBER, HENCE_CELL_TEXT or HENCE_CELL_ERROR; `n` (in):
 // rows x columns; `error` (out, may be NULL).
-// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT; HENCE_ERR_CAPACITY with the number of cells as index where `n`
-// is another. Threads: any.
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_OVERLAP; HENCE_ERR_CAPACITY with the number of cells
+// as index where `n` is another. Threads: any.
 int32_t hence_answer_cells(const hence_answer *answer,
                            double *numbers,
                            uint8_t *kinds,
@@ -177,7 +180,8 @@ int32_t hence_answer_cells(const hence_answer *answer,
 // Arguments: `answer` (in, not NULL); `cell` (in): its place, row by row from 0; `buffer` (out): `capacity` bytes of the
 // caller's, gets NUL-ended UTF-8; `capacity` (in); `error` (out, may be NULL). A buffer that is too small is
 // HENCE_ERR_CAPACITY, with the bytes needed as index, and stays untouched.
-// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_CAPACITY; HENCE_ERR_LENGTH where there is no such cell. Threads: any.
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_CAPACITY; HENCE_ERR_LENGTH where there is no such
+// cell. Threads: any.
 int32_t hence_answer_text(const hence_answer *answer,
                           size_t cell,
                           char *buffer,
@@ -188,8 +192,10 @@ int32_t hence_answer_text(const hence_answer *answer,
 //
 // Arguments: `line` (in, NUL-ended UTF-8, borrowed, not NULL); `out` (out, not NULL): a new handle, caller
 // owns (free with hence_basis_free); `error` (out, may be NULL).
-// Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_UTF8; HENCE_ERR_SYNTAX with the character as index;
-// HENCE_ERR_SCHEDULE; HENCE_ERR_RANGE; HENCE_ERR_CONTEXT for curves with calendar edges or by project length, which
+// Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT; HENCE_ERR_UTF8 with the byte as index; HENCE_ERR_SYNTAX,
+// HENCE_ERR_SCHEDULE with the character as index; HENCE_ERR_RANGE, HENCE_ERR_NOT_FINITE for a rate, weight, edge or
+// other parameter that cannot be, with the character as index where one number is to blame, else -1;
+// HENCE_ERR_UNSUPPORTED; HENCE_ERR_CONTEXT for curves with calendar edges or by project length, which
 // hence_basis_parse_at takes.
 // Threads: any.
 int32_t hence_basis_parse(const char *line,
@@ -201,7 +207,9 @@ int32_t hence_basis_parse(const char *line,
 // Arguments: `line` as for hence_basis_parse; `base_year` (in): the calendar year of the base, 1000 to 9999, for edges in
 // calendar years; 0 where it is not given; `length` (in): the appraisal's length in years, above 0, for curves by
 // project length; 0 where it is not given; `out` and `error` as for hence_basis_parse.
-// Returns as hence_basis_parse; HENCE_ERR_RANGE, HENCE_ERR_NOT_FINITE for a base year or a length that cannot be.
+// Returns as hence_basis_parse, a base year or a length that is missing (HENCE_ERR_CONTEXT) or cannot be
+// (HENCE_ERR_RANGE, HENCE_ERR_NOT_FINITE) being the argument at fault; HENCE_ERR_DOMAIN for a length past the last edge
+// of the curve.
 // Threads: any.
 int32_t hence_basis_parse_at(const char *line,
                              int32_t base_year,
@@ -219,7 +227,7 @@ void hence_basis_free(hence_basis *basis);
 // Arguments: `basis` (in, not NULL); `buffer` (out): `capacity` bytes of the caller's, gets NUL-ended UTF-8;
 // `capacity` (in); `error` (out, may be NULL). A buffer that is too small is HENCE_ERR_CAPACITY, with the bytes
 // needed as index, and stays untouched.
-// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_CAPACITY, HENCE_ERR_LENGTH. Threads: any.
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_CAPACITY, HENCE_ERR_LENGTH. Threads: any.
 int32_t hence_basis_describe(const hence_basis *basis,
                              char *buffer,
                              size_t capacity,
@@ -249,8 +257,8 @@ int32_t hence_basis_timing(const hence_basis *basis,
 //
 // Arguments: `id` (in, NUL-ended UTF-8, borrowed, not NULL; in any case); `buffer`, `capacity` and `error` as for
 // hence_basis_describe.
-// Returns as hence_basis_describe; HENCE_ERR_UTF8; HENCE_ERR_SCHEDULE where no such schedule is built in;
-// HENCE_ERR_UNSUPPORTED for a table of factors, which no line can state. Threads: any.
+// Returns as hence_basis_describe; HENCE_ERR_UTF8 with the byte as index; HENCE_ERR_SCHEDULE where no such schedule is
+// built in; HENCE_ERR_UNSUPPORTED for a table of factors, which no line can state. Threads: any.
 int32_t hence_schedule_line(const char *id,
                             char *buffer,
                             size_t capacity,
@@ -264,9 +272,9 @@ int32_t hence_schedule_line(const char *id,
 // "flows middle, base start" and so on, NULL for end and end; `offsets` (out, `n` doubles, may not overlap `years`);
 // `error` (out, may be NULL).
 // Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP, HENCE_ERR_UTF8;
-// HENCE_ERR_NOT_FINITE with the index; HENCE_ERR_SYNTAX with the character of `timing` as index; HENCE_ERR_UNSUPPORTED
-// for averaged flows, which stand at two offsets: call with "flows start" and "flows end", and take the mean of the two
-// factors. Threads: any.
+// HENCE_ERR_NOT_FINITE with the index; HENCE_ERR_SYNTAX, or HENCE_ERR_NO_MEANING for an averaged base, with the
+// character of `timing` as index; HENCE_ERR_UNSUPPORTED for averaged flows, which stand at two offsets: call with
+// "flows start" and "flows end", and take the mean of the two factors. Threads: any.
 int32_t hence_offsets_from_years(const double *years,
                                  size_t n,
                                  double base,
@@ -394,7 +402,8 @@ int32_t hence_real_rate(double nominal,
 // Present value of one stream: the sum of D(offset) x flow, correctly rounded from the factors.
 //
 // Arguments: `basis` (in, not NULL); `offsets` (in, `n` doubles, years from the base); `flows` (in, `n` doubles,
-// any sign); `n` (in; 0 gives 0); `value` (out, one double, not NULL); `error` (out, may be NULL).
+// any sign); `n` (in; 0 gives 0); `value` (out, one double, not NULL, may not overlap the inputs); `error` (out, may be
+// NULL).
 // Returns and threads as hence_factors.
 int32_t hence_present_value(const hence_basis *basis,
                             const double *offsets,
@@ -408,9 +417,9 @@ int32_t hence_present_value(const hence_basis *basis,
 // In cells: HENCE.VALUE.
 //
 // Arguments: `basis` (in, not NULL); `offsets` (in, `n` doubles, years from the base); `flows` (in, `rows` x `n`
-// doubles, row by row: the stream i begins at flows[i * n]); `rows` (in; 0 writes nothing); `n` (in; 0 gives 0 for each
+// doubles, row by row: the stream i begins at number i x n); `rows` (in; 0 writes nothing); `n` (in; 0 gives 0 for each
 // stream); `values` (out, `rows` doubles, may not overlap the inputs); `error` (out, may be NULL).
-// Returns as hence_factors, an index of `flows` counting from flows[0]. Threads: any.
+// Returns as hence_factors, an index of `flows` counting from its first. Threads: any.
 int32_t hence_present_values(const hence_basis *basis,
                              const double *offsets,
                              const double *flows,
@@ -440,7 +449,8 @@ int32_t hence_annual_equivalent(const hence_basis *basis,
 // Arguments: `offsets` (in, `n` doubles, years, in any order); `flows` (in, `n` doubles, net flows); `n` (in, at least
 // 1); `lowest`, `highest` (in), the interval, both above -1: -0.5 and 1 as a rule; `rates` (out, `capacity` doubles;
 // NULL only when `capacity` is 0; may not overlap the inputs); `capacity` (in): n - 1 is always enough for flows at
-// different offsets; `count` (out, one size_t, not NULL): how many there are, 0 for none; `error` (out, may be NULL).
+// different offsets; `count` (out, one size_t, not NULL, may not overlap the arrays): how many there are, 0 for none;
+// `error` (out, may be NULL).
 // Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP, HENCE_ERR_NOT_FINITE;
 // HENCE_ERR_RANGE for an interval that is empty or reaches -1; HENCE_ERR_CAPACITY with the number of rates as index;
 // HENCE_ERR_SHAPE without flows; HENCE_ERR_NO_MEANING where every flow is 0, or where the flows do not settle how many

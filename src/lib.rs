@@ -13,6 +13,7 @@ mod check;
 mod curve;
 mod dd;
 mod derivation;
+mod draws;
 mod error;
 mod evidence;
 mod growth;
@@ -28,6 +29,7 @@ mod sum;
 mod switching;
 mod tail;
 mod timing;
+mod welfare;
 
 pub use basis::{Basis, CAUTION, PriceBasis};
 pub use calendar::{DayCount, offset_of_dates, parse_financial_year, years_after_base};
@@ -35,6 +37,10 @@ pub use catalogue::Catalogue;
 pub use curve::{Curve, Domain, Parts};
 pub use derivation::{
     Derivation, ElasticitySource, Figure, FigureKind, GrowthBy, GrowthSource, Hazard, RateParts, Stated,
+};
+pub use draws::{
+    Chance, Distribution, DrawSummary, Drawn, DrawnRate, Draws, FirstPlace, Histogram, OptionFlows,
+    Perpetual, Quantity, RateDistribution, Spread, draw_values, first_places, histogram, spread,
 };
 pub use error::{Error, ErrorKind, Result};
 pub use evidence::{
@@ -53,6 +59,10 @@ pub use rateline::{RateLine, distance, parse_number, parse_percentage, percent};
 pub use schedule::{Schedule, ScheduleStatus};
 pub use spec::{Band, Compounding, Edge, GrowthState, HorizonRule, Persistence, Spec, Where};
 pub use sum::{ExactSum, dot, sum};
-pub use switching::{Endless, NetFlows, Parameter, Switching, switching_multiplier, switching_values};
+pub use switching::{Parameter, Switching, switching_multiplier, switching_values};
 pub use tail::Tail;
 pub use timing::{Position, TimedOffset, Timing, timing_sentence};
+pub use welfare::{
+    compensating_variation, compensation, compensation_rate, equally_distributed_equivalent,
+    equivalent_variation, marginal_utility, ramsey_rate_exact, utility, welfare, welfare_factors,
+};

@@ -33,6 +33,18 @@ fn check<T>(pointer: *const T, count: usize, argument: i32) -> Result<(), Failur
     Ok(())
 }
 
+/// A handle that the library made. `noun` names it in the message.
+///
+/// # Safety
+/// `pointer` is NULL, not aligned (both are answered), or a live handle.
+pub(crate) unsafe fn handle<'a, T>(pointer: *const T, noun: &str) -> Result<&'a T, Failure> {
+    if !pointer.is_null() && !pointer.is_aligned() {
+        return Err(Failure::new(HENCE_ERR_ALIGNMENT, 1, format!("the {noun} is not a pointer to one")));
+    }
+    // SAFETY: NULL gives None; else aligned (checked) and a live handle by the caller's contract.
+    unsafe { pointer.as_ref() }.ok_or_else(|| Failure::new(HENCE_ERR_NULL, 1, format!("the {noun} is NULL")))
+}
+
 /// Checks a pointer that is read from.
 pub(crate) fn input<T>(pointer: *const T, length: usize, argument: i32) -> Result<(), Failure> {
     if length == 0 { Ok(()) } else { check(pointer, length, argument) }
@@ -88,44 +100,54 @@ pub(crate) fn output<T>(pointer: *mut T, length: usize, argument: i32) -> Result
     if length == 0 { Ok(()) } else { check(pointer, length, argument) }
 }
 
-/// Refuses an output that overlaps an input.
+/// Refuses an output that overlaps another argument, an input or an output too.
 pub(crate) fn apart<A, B>(
-    input: *const A,
-    read: usize,
+    other: *const A,
+    length: usize,
     output: *const B,
     written: usize,
     argument: i32,
 ) -> Result<(), Failure> {
     let end = |start: usize, length: usize, size: usize| start.saturating_add(length.saturating_mul(size));
-    let (a, b) = (input as usize, output as usize);
-    let (a_end, b_end) = (end(a, read, size_of::<A>()), end(b, written, size_of::<B>()));
-    if read > 0 && written > 0 && a < b_end && b < a_end {
-        return Err(Failure::new(HENCE_ERR_OVERLAP, argument, "the output overlaps an input"));
+    let (a, b) = (other as usize, output as usize);
+    let (a_end, b_end) = (end(a, length, size_of::<A>()), end(b, written, size_of::<B>()));
+    if length > 0 && written > 0 && a < b_end && b < a_end {
+        return Err(Failure::new(HENCE_ERR_OVERLAP, argument, "the output overlaps another argument"));
     }
     Ok(())
 }
 
-/// Numbers for results, of which none is written before all are known.
-pub(crate) fn buffer(length: usize, argument: i32) -> Result<Vec<f64>, Failure> {
-    let mut numbers = Vec::new();
-    if numbers.try_reserve_exact(length).is_err() {
-        let message = format!("there is no memory for {length} results");
-        return Err(Failure::new(HENCE_ERR_LENGTH, argument, message));
+/// Memory for as many elements. An allocation that fails must not end the caller's process. `argument` is the length.
+pub(crate) fn reserve<T>(length: usize, argument: i32) -> Result<Vec<T>, Failure> {
+    let mut elements = Vec::new();
+    if elements.try_reserve_exact(length).is_err() {
+        return Err(Failure::new(
+            HENCE_ERR_LENGTH,
+            argument,
+            format!("there is no memory for {length} elements"),
+        ));
     }
+    Ok(elements)
+}
+
+/// Numbers for results, of which none is written before all are known. `argument` is the length.
+pub(crate) fn buffer(length: usize, argument: i32) -> Result<Vec<f64>, Failure> {
+    let mut numbers = reserve(length, argument)?;
     numbers.resize(length, 0.0);
     Ok(numbers)
 }
 
-/// Writes `length` results, once all of them are known.
+/// Writes `length` results, once all of them are known. `argument` is the length.
 ///
 /// # Safety
 /// `out` is writable for `length` doubles.
 pub(crate) unsafe fn fill(
     out: *mut f64,
     length: usize,
+    argument: i32,
     result: impl Fn(usize) -> Result<f64, Failure>,
 ) -> Result<(), Failure> {
-    let mut results = buffer(length, 0)?;
+    let mut results = buffer(length, argument)?;
     for (i, place) in results.iter_mut().enumerate() {
         *place = result(i)?;
     }

@@ -4,11 +4,11 @@ use std::sync::LazyLock;
 
 use libc::c_char;
 
-use hence_core::{Basis, Catalogue, Curve, Where};
+use hence_core::{Basis, Catalogue, Curve, ErrorKind, Where};
 
 use crate::arguments;
 use crate::error::{Failure, Guarded, guard, hence_error};
-use crate::status::{HENCE_ERR_NULL, HENCE_ERR_RANGE, HENCE_ERR_SCHEDULE};
+use crate::status::{HENCE_ERR_RANGE, HENCE_ERR_SCHEDULE};
 
 /// A parsed basis with its curve. Opaque and immutable: any number of threads may use one.
 pub struct hence_basis {
@@ -23,8 +23,10 @@ pub(crate) static CATALOGUE: LazyLock<Catalogue> = LazyLock::new(Catalogue::buil
 ///
 /// Arguments: `line` (in, NUL-ended UTF-8, borrowed, not NULL); `out` (out, not NULL): a new handle, caller
 /// owns (free with hence_basis_free); `error` (out, may be NULL).
-/// Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_UTF8; HENCE_ERR_SYNTAX with the character as index;
-/// HENCE_ERR_SCHEDULE; HENCE_ERR_RANGE; HENCE_ERR_CONTEXT for curves with calendar edges or by project length, which
+/// Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT; HENCE_ERR_UTF8 with the byte as index; HENCE_ERR_SYNTAX,
+/// HENCE_ERR_SCHEDULE with the character as index; HENCE_ERR_RANGE, HENCE_ERR_NOT_FINITE for a rate, weight, edge or
+/// other parameter that cannot be, with the character as index where one number is to blame, else -1;
+/// HENCE_ERR_UNSUPPORTED; HENCE_ERR_CONTEXT for curves with calendar edges or by project length, which
 /// hence_basis_parse_at takes.
 /// Threads: any.
 #[unsafe(no_mangle)]
@@ -34,7 +36,7 @@ pub unsafe extern "C" fn hence_basis_parse(
     error: *mut hence_error,
 ) -> i32 {
     // SAFETY: the caller's contracts, passed on.
-    unsafe { guard(error, || parse(line, Where::default(), out, 2)) }
+    unsafe { guard(error, || parse(line, Where::default(), out, Places { base_year: 1, length: 1, out: 2 })) }
 }
 
 /// Parses a basis whose curve needs a base year or the appraisal's length.
@@ -42,7 +44,9 @@ pub unsafe extern "C" fn hence_basis_parse(
 /// Arguments: `line` as for hence_basis_parse; `base_year` (in): the calendar year of the base, 1000 to 9999, for edges in
 /// calendar years; 0 where it is not given; `length` (in): the appraisal's length in years, above 0, for curves by
 /// project length; 0 where it is not given; `out` and `error` as for hence_basis_parse.
-/// Returns as hence_basis_parse; HENCE_ERR_RANGE, HENCE_ERR_NOT_FINITE for a base year or a length that cannot be.
+/// Returns as hence_basis_parse, a base year or a length that is missing (HENCE_ERR_CONTEXT) or cannot be
+/// (HENCE_ERR_RANGE, HENCE_ERR_NOT_FINITE) being the argument at fault; HENCE_ERR_DOMAIN for a length past the last edge
+/// of the curve.
 /// Threads: any.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_basis_parse_at(
@@ -67,20 +71,39 @@ pub unsafe extern "C" fn hence_basis_parse_at(
             length: (length != 0.0).then_some(length),
         };
         // SAFETY: the caller's contracts, passed on.
-        unsafe { parse(line, at, out, 4) }
+        unsafe { parse(line, at, out, Places { base_year: 2, length: 3, out: 4 }) }
     };
     // SAFETY: the caller's contract for `error`.
     unsafe { guard(error, body) }
 }
 
+/// The numbers of the arguments beside the line. Where a function has no such argument, the line is at fault.
+struct Places {
+    base_year: i32,
+    length: i32,
+    out: i32,
+}
+
+impl Places {
+    /// A failure to make the curve. The library's index is then the place of a band, which a caller cannot see.
+    fn failure(&self, error: &hence_core::Error) -> Failure {
+        let argument = match (error.kind(), error.argument()) {
+            (ErrorKind::NeedsBase, _) => self.base_year,
+            (_, "length") => self.length,
+            _ => 1,
+        };
+        Failure { index: -1, ..Failure::core(error, argument) }
+    }
+}
+
 /// # Safety
 /// `line` is NULL or NUL-ended; `out` is NULL or writable.
-unsafe fn parse(line: *const c_char, at: Where, out: *mut *mut hence_basis, argument: i32) -> Guarded {
+unsafe fn parse(line: *const c_char, at: Where, out: *mut *mut hence_basis, places: Places) -> Guarded {
     // SAFETY: the caller's contract for `line`.
     let line = unsafe { arguments::text(line, 1) }?;
-    arguments::output(out, 1, argument)?;
+    arguments::output(out, 1, places.out)?;
     let basis = Basis::parse(line, &CATALOGUE).map_err(|e| Failure::core(&e, 1))?;
-    let curve = basis.curve(&at).map_err(|e| Failure::core(&e, 1))?;
+    let curve = basis.curve(&at).map_err(|e| places.failure(&e))?;
     let handle = Box::into_raw(Box::new(hence_basis { basis, curve }));
     // SAFETY: `out` is not NULL and aligned (checked), and writable by the caller's contract.
     unsafe { out.write(handle) };
@@ -103,7 +126,7 @@ pub unsafe extern "C" fn hence_basis_free(basis: *mut hence_basis) {
 /// Arguments: `basis` (in, not NULL); `buffer` (out): `capacity` bytes of the caller's, gets NUL-ended UTF-8;
 /// `capacity` (in); `error` (out, may be NULL). A buffer that is too small is HENCE_ERR_CAPACITY, with the bytes
 /// needed as index, and stays untouched.
-/// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_CAPACITY, HENCE_ERR_LENGTH. Threads: any.
+/// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_CAPACITY, HENCE_ERR_LENGTH. Threads: any.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_basis_describe(
     basis: *const hence_basis,
@@ -165,8 +188,8 @@ pub unsafe extern "C" fn hence_basis_timing(
 ///
 /// Arguments: `id` (in, NUL-ended UTF-8, borrowed, not NULL; in any case); `buffer`, `capacity` and `error` as for
 /// hence_basis_describe.
-/// Returns as hence_basis_describe; HENCE_ERR_UTF8; HENCE_ERR_SCHEDULE where no such schedule is built in;
-/// HENCE_ERR_UNSUPPORTED for a table of factors, which no line can state. Threads: any.
+/// Returns as hence_basis_describe; HENCE_ERR_UTF8 with the byte as index; HENCE_ERR_SCHEDULE where no such schedule is
+/// built in; HENCE_ERR_UNSUPPORTED for a table of factors, which no line can state. Threads: any.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_schedule_line(
     id: *const c_char,
@@ -189,8 +212,8 @@ pub unsafe extern "C" fn hence_schedule_line(
 }
 
 /// # Safety
-/// `basis` is NULL or a live handle.
+/// As [`arguments::handle`].
 pub(crate) unsafe fn borrow<'a>(basis: *const hence_basis) -> Result<&'a hence_basis, Failure> {
-    // SAFETY: NULL gives None; else a live handle by the caller's contract.
-    unsafe { basis.as_ref() }.ok_or_else(|| Failure::new(HENCE_ERR_NULL, 1, "the basis is NULL"))
+    // SAFETY: the caller's contract, passed on.
+    unsafe { arguments::handle(basis, "basis") }
 }

@@ -17,9 +17,9 @@ use crate::status::{HENCE_ERR_SYNTAX, HENCE_ERR_UNSUPPORTED};
 /// "flows middle, base start" and so on, NULL for end and end; `offsets` (out, `n` doubles, may not overlap `years`);
 /// `error` (out, may be NULL).
 /// Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP, HENCE_ERR_UTF8;
-/// HENCE_ERR_NOT_FINITE with the index; HENCE_ERR_SYNTAX with the character of `timing` as index; HENCE_ERR_UNSUPPORTED
-/// for averaged flows, which stand at two offsets: call with "flows start" and "flows end", and take the mean of the two
-/// factors. Threads: any.
+/// HENCE_ERR_NOT_FINITE with the index; HENCE_ERR_SYNTAX, or HENCE_ERR_NO_MEANING for an averaged base, with the
+/// character of `timing` as index; HENCE_ERR_UNSUPPORTED for averaged flows, which stand at two offsets: call with
+/// "flows start" and "flows end", and take the mean of the two factors. Threads: any.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_offsets_from_years(
     years: *const f64,
@@ -49,7 +49,7 @@ pub unsafe extern "C" fn hence_offsets_from_years(
             )),
         };
         // SAFETY: `offsets` is checked, and holds `n` doubles by the caller's contract.
-        unsafe { arguments::fill(offsets, n, offset) }
+        unsafe { arguments::fill(offsets, n, 2, offset) }
     };
     // SAFETY: the caller's contract for `error`.
     unsafe { guard(error, body) }
@@ -89,7 +89,7 @@ pub unsafe extern "C" fn hence_offsets_from_dates(
             offset_of_dates(base, date, count).map_err(|e| Failure::at(&e, 1, i))
         };
         // SAFETY: `offsets` is checked, and holds `n` doubles by the caller's contract.
-        unsafe { arguments::fill(offsets, n, offset) }
+        unsafe { arguments::fill(offsets, n, 2, offset) }
     };
     // SAFETY: the caller's contract for `error`.
     unsafe { guard(error, body) }

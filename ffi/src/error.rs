@@ -6,7 +6,14 @@ use libc::c_char;
 
 use crate::status;
 
-/// What went wrong, written into the caller's own struct. Nothing in it is allocated or freed.
+// The guard turns a panic into a status only where panics unwind.
+#[cfg(not(panic = "unwind"))]
+compile_error!(
+    "hence-ffi needs panic = \"unwind\": with another setting a fault would end the caller's process"
+);
+
+/// What went wrong, written into the caller's own struct, which may overlap no other argument. Nothing in it is
+/// allocated or freed.
 #[repr(C)]
 #[derive(Clone, Copy)]
 pub struct hence_error {
@@ -16,7 +23,8 @@ pub struct hence_error {
     pub code: i32,
     /// Out: the argument it is about, counted from 1; 0 where it is about none.
     pub argument: i32,
-    /// Out: the index within that argument, or the character within a text; -1 where there is none.
+    /// Out: the index within that argument, from 0; within a text the character (HENCE_ERR_UTF8: the byte); what is needed
+    /// (HENCE_ERR_CAPACITY); -1 where there is none.
     pub index: i64,
     /// Out: the message, UTF-8, always ended by NUL, cut at a character.
     pub message: [c_char; 256],

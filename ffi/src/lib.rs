@@ -14,6 +14,8 @@ mod error;
 mod evidence;
 mod measures;
 mod status;
+#[cfg(test)]
+mod tests;
 pub mod worksheet;
 
 pub use answer::{

@@ -1,6 +1,6 @@
 //! Measures over flows: present values, annual equivalents, internal rates of return.
 
-use hence_core::{annual_equivalent, dot, internal_rates, present_value};
+use hence_core::{annual_equivalent, dot, internal_rates};
 
 use crate::arguments;
 use crate::basis::{borrow, hence_basis};
@@ -10,7 +10,8 @@ use crate::status::{HENCE_ERR_CAPACITY, HENCE_ERR_NO_MEANING, HENCE_ERR_NOT_FINI
 /// Present value of one stream: the sum of D(offset) x flow, correctly rounded from the factors.
 ///
 /// Arguments: `basis` (in, not NULL); `offsets` (in, `n` doubles, years from the base); `flows` (in, `n` doubles,
-/// any sign); `n` (in; 0 gives 0); `value` (out, one double, not NULL); `error` (out, may be NULL).
+/// any sign); `n` (in; 0 gives 0); `value` (out, one double, not NULL, may not overlap the inputs); `error` (out, may be
+/// NULL).
 /// Returns and threads as hence_factors.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_present_value(
@@ -29,8 +30,11 @@ pub unsafe extern "C" fn hence_present_value(
         let (offsets, flows) =
             unsafe { (arguments::numbers(offsets, n, 2)?, arguments::numbers(flows, n, 3)?) };
         arguments::output(value, 1, 5)?;
-        let result = present_value(&basis.curve, offsets, flows)
-            .map_err(|e| Failure::core(&e, if e.argument() == "flows" { 3 } else { 2 }))?;
+        arguments::apart(offsets.as_ptr(), n, value, 1, 5)?;
+        arguments::apart(flows.as_ptr(), n, value, 1, 5)?;
+        let mut factors = arguments::buffer(n, 4)?;
+        basis.curve.factors(offsets, &mut factors).map_err(|e| Failure::core(&e, 2))?;
+        let result = stream_value(&factors, flows)?;
         // SAFETY: `value` is not NULL and aligned (checked), and writable by the caller's contract.
         unsafe { value.write(result) };
         Ok(())
@@ -39,14 +43,23 @@ pub unsafe extern "C" fn hence_present_value(
     unsafe { guard(error, body) }
 }
 
+/// The present value of a stream at these factors; flows are the third argument.
+fn stream_value(factors: &[f64], flows: &[f64]) -> Result<f64, Failure> {
+    let value = dot(factors, flows);
+    if value.is_finite() {
+        return Ok(value);
+    }
+    Err(Failure::new(HENCE_ERR_NOT_FINITE, 3, "the present value is too large for a number"))
+}
+
 /// Present values of several streams at the same offsets, one a stream, each as hence_present_value gives it.
 ///
 /// In cells: HENCE.VALUE.
 ///
 /// Arguments: `basis` (in, not NULL); `offsets` (in, `n` doubles, years from the base); `flows` (in, `rows` x `n`
-/// doubles, row by row: the stream i begins at flows[i * n]); `rows` (in; 0 writes nothing); `n` (in; 0 gives 0 for each
+/// doubles, row by row: the stream i begins at number i x n); `rows` (in; 0 writes nothing); `n` (in; 0 gives 0 for each
 /// stream); `values` (out, `rows` doubles, may not overlap the inputs); `error` (out, may be NULL).
-/// Returns as hence_factors, an index of `flows` counting from flows[0]. Threads: any.
+/// Returns as hence_factors, an index of `flows` counting from its first. Threads: any.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_present_values(
     basis: *const hence_basis,
@@ -73,15 +86,11 @@ pub unsafe extern "C" fn hence_present_values(
         let mut factors = arguments::buffer(n, 5)?;
         basis.curve.factors(offsets, &mut factors).map_err(|e| Failure::core(&e, 2))?;
         let value = |row: usize| {
-            let value = dot(&factors, &flows[row * n..(row + 1) * n]);
-            if value.is_finite() {
-                return Ok(value);
-            }
-            let message = format!("the present value of stream {row} is too large for a number");
-            Err(Failure::new(HENCE_ERR_NOT_FINITE, 3, message).with_index(row * n))
+            stream_value(&factors, &flows[row * n..(row + 1) * n])
+                .map_err(|failure| failure.with_index(row * n))
         };
         // SAFETY: `values` is checked, and holds `rows` doubles by the caller's contract.
-        unsafe { arguments::fill(values, rows, value) }
+        unsafe { arguments::fill(values, rows, 4, value) }
     };
     // SAFETY: the caller's contract for `error`.
     unsafe { guard(error, body) }
@@ -120,6 +129,9 @@ pub unsafe extern "C" fn hence_annual_equivalent(
     unsafe { guard(error, body) }
 }
 
+/// Doubles for each flow that the search for rates of return surely fits in: it holds about a dozen.
+const COPIES: usize = 24;
+
 /// Every internal rate of return in an interval, rising: the rates r with sum of flow x (1+r)^-offset = 0.
 ///
 /// In cells: HENCE.IRR.
@@ -127,7 +139,8 @@ pub unsafe extern "C" fn hence_annual_equivalent(
 /// Arguments: `offsets` (in, `n` doubles, years, in any order); `flows` (in, `n` doubles, net flows); `n` (in, at least
 /// 1); `lowest`, `highest` (in), the interval, both above -1: -0.5 and 1 as a rule; `rates` (out, `capacity` doubles;
 /// NULL only when `capacity` is 0; may not overlap the inputs); `capacity` (in): n - 1 is always enough for flows at
-/// different offsets; `count` (out, one size_t, not NULL): how many there are, 0 for none; `error` (out, may be NULL).
+/// different offsets; `count` (out, one size_t, not NULL, may not overlap the arrays): how many there are, 0 for none;
+/// `error` (out, may be NULL).
 /// Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP, HENCE_ERR_NOT_FINITE;
 /// HENCE_ERR_RANGE for an interval that is empty or reaches -1; HENCE_ERR_CAPACITY with the number of rates as index;
 /// HENCE_ERR_SHAPE without flows; HENCE_ERR_NO_MEANING where every flow is 0, or where the flows do not settle how many
@@ -156,6 +169,9 @@ pub unsafe extern "C" fn hence_irr_all(
         arguments::output(count, 1, 8)?;
         arguments::apart(offsets.as_ptr(), n, rates, capacity, 6)?;
         arguments::apart(flows.as_ptr(), n, rates, capacity, 6)?;
+        arguments::apart(offsets.as_ptr(), n, count, 1, 8)?;
+        arguments::apart(flows.as_ptr(), n, count, 1, 8)?;
+        arguments::apart(rates, capacity, count, 1, 8)?;
         let argument = |e: &hence_core::Error| match e.argument() {
             "offsets" => 1,
             "interval" => 4,
@@ -164,6 +180,8 @@ pub unsafe extern "C" fn hence_irr_all(
         if n == 0 {
             return Err(Failure::new(HENCE_ERR_SHAPE, 3, "there are no flows"));
         }
+        // The search holds some copies of the flows, and would end the process without memory for them.
+        drop(arguments::reserve::<[f64; COPIES]>(n, 3)?);
         let found =
             internal_rates(offsets, flows, (lowest, highest)).map_err(|e| Failure::core(&e, argument(&e)))?;
         if let Some((from, to)) = found.unresolved.first() {
@@ -180,7 +198,7 @@ pub unsafe extern "C" fn hence_irr_all(
         }
         // SAFETY: both are checked; `rates` holds `capacity` >= `needed` doubles by the caller's contract.
         unsafe {
-            arguments::fill(rates, needed, |i| Ok(found.rates[i]))?;
+            arguments::fill(rates, needed, 7, |i| Ok(found.rates[i]))?;
             count.write(needed);
         }
         Ok(())

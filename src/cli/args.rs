@@ -1,6 +1,7 @@
 //! The one declaration of the command line: help, man page and completions derive from it.
 
 use std::ffi::{OsStr, OsString};
+use std::num::NonZeroUsize;
 use std::path::PathBuf;
 
 use clap::{Args, CommandFactory, Parser, Subcommand, ValueEnum};
@@ -51,6 +52,8 @@ pub enum Command {
     Brief(Brief),
     /// Print the factors and rates of a curve
     Curve(Curve),
+    /// Draw the rate from distributions, and print how the net present values spread
+    Draws(Draws),
     /// Build a Ramsey rate from its parts, and show where every figure comes from
     Rate(Rate),
     /// List the schedules, or print one with its source
@@ -92,6 +95,9 @@ pub struct Fill {
     /// Replace formulas found in target cells, where they are not hence's own
     #[arg(long)]
     pub replace_formulas: bool,
+    /// A rate line or schedule to value it on besides, for the audit's sensitivity sheet
+    #[arg(long, value_name = "LINE|ID")]
+    pub against: Vec<String>,
     /// A text for the audit summary: the date or state of the data
     #[arg(long, value_name = "TEXT")]
     pub as_of: Option<String>,
@@ -202,6 +208,51 @@ pub struct Curve {
     #[arg(long, value_name = "N")]
     pub length: Option<f64>,
     /// Comma-separated values
+    #[arg(long, conflicts_with = "json")]
+    pub csv: bool,
+    /// Print one JSON document
+    #[arg(long)]
+    pub json: bool,
+}
+
+#[derive(Debug, Args)]
+#[command(
+    after_help = "A distribution is a value (1%, an elasticity 1.5), `normal mean 1% sd 0.3%` (with `within 0% to \
+                        2%`), `uniform 1% to 3%`, `triangular 1%, 1.5%, 2%` (lowest, most likely, highest) or `0.3 at 1%, \
+                        0.7 at 2%`. What is left out is taken from the workbook's own Ramsey rule."
+)]
+pub struct Draws {
+    /// The workbook; - reads it from standard input
+    #[arg(value_name = "BOOK")]
+    pub book: PathBuf,
+    /// Pure time preference: a distribution, or a value such as 1%
+    #[arg(long, value_name = "DISTRIBUTION")]
+    pub preference: Option<String>,
+    /// Hazard (else 0%, where the workbook states none)
+    #[arg(long, value_name = "DISTRIBUTION")]
+    pub hazard: Option<String>,
+    /// Elasticity of marginal utility, in plain numbers
+    #[arg(long, value_name = "DISTRIBUTION")]
+    pub elasticity: Option<String>,
+    /// Growth of consumption per head
+    #[arg(long, value_name = "DISTRIBUTION")]
+    pub growth: Option<String>,
+    /// How many draws, 1 to 10,000,000
+    #[arg(long, value_name = "N", default_value_t = 10_000)]
+    pub draws: usize,
+    /// Another seed gives other random numbers
+    #[arg(long, value_name = "N", default_value_t = 1)]
+    pub seed: u64,
+    /// Threads that share the work, which do not change the results (else as many as the machine runs at once)
+    #[arg(long, value_name = "N")]
+    pub threads: Option<NonZeroUsize>,
+    /// The percentiles to print
+    #[arg(long, value_name = "P,P,...", value_delimiter = ',', default_value = "5,25,50,75,95")]
+    pub percentiles: Vec<f64>,
+    /// Give a role to cells without a defined name
+    #[arg(long = "role", value_name = "ROLE=RANGE")]
+    pub roles: Vec<String>,
+    /// Every draw as comma-separated values: its parts, its rate, the net present value of each option as it stands
     #[arg(long, conflicts_with = "json")]
     pub csv: bool,
     /// Print one JSON document
@@ -377,7 +428,7 @@ pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
             }
         }
         let mut named = OsString::new();
-        if against && book {
+        if against && book && command.as_deref() == Some("compare") {
             named.push(format!("{SEVERAL}="));
             named.push(arg);
             prepared.push(named);

@@ -1,7 +1,7 @@
 //! A comparison as text, comma-separated values and JSON.
 
 use hence_core::Parameter;
-use hence_workbook::compare::{Comparison, Entry, Moved, change_words, heading, note, shown, words};
+use hence_workbook::compare::{Comparison, Entry, Moved, change_words, heading, remark, shown, words};
 use hence_workbook::problem::Problem;
 use serde_json::{Value, json};
 
@@ -98,7 +98,7 @@ pub fn csv(found: &Comparison) -> String {
                 entry.against.map(name).unwrap_or_default(),
                 field(&entry.moved.to_string()),
                 shortest_or_blank(value),
-                field(&note(entry))
+                field(&remark(entry))
             ));
         }
     }
@@ -204,8 +204,8 @@ fn switching(found: &Comparison) -> String {
         }
         let values: Vec<String> = entry.values.iter().map(|x| shown(&entry.moved, *x)).collect();
         row.push(if values.is_empty() { "-".to_owned() } else { values.join(", ") });
-        if !note(entry).is_empty() {
-            notes.push(format!("  {} and {}, {parameter}: {}\n", row[0], row[1], note(entry)));
+        if !remark(entry).is_empty() {
+            notes.push(format!("  {} and {}, {parameter}: {}\n", row[0], row[1], remark(entry)));
         }
         if entry.interval != parameter.interval() {
             let (low, high) = entry.interval;
@@ -230,7 +230,7 @@ fn switching(found: &Comparison) -> String {
     let mut rows = vec![["Option", "Stream", "Multiplier"].map(String::from).to_vec()];
     for entry in found.switching.iter().filter(|entry| entry.against.is_none()).filter(told) {
         if let Moved::Multiplier(stream) = &entry.moved {
-            let value = entry.values.first().map_or_else(|| note(entry), |x| shown(&entry.moved, *x));
+            let value = entry.values.first().map_or_else(|| remark(entry), |x| shown(&entry.moved, *x));
             rows.push(vec![name(entry.option), stream.clone(), value]);
         }
     }

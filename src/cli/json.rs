@@ -1,5 +1,7 @@
 //! The JSON documents: one shape a command, with a schema number.
 
+use std::collections::BTreeMap;
+
 use hence_workbook::problem::{Problem, Severity};
 use hence_workbook::report::{OptionReport, Report, Status};
 use serde::Serialize;
@@ -37,6 +39,10 @@ pub struct FilledOption {
     pub pv_costs: f64,
     pub ratio: Option<f64>,
     pub annual: Option<f64>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub prices: Option<String>,
+    #[serde(skip_serializing_if = "BTreeMap::is_empty")]
+    pub stream_bases: BTreeMap<String, String>,
 }
 
 #[derive(Serialize)]
@@ -59,6 +65,8 @@ impl From<&OptionReport> for FilledOption {
             pv_costs: totals.pv_costs,
             ratio: totals.ratio,
             annual: totals.annual,
+            prices: option.prices.clone(),
+            stream_bases: option.stream_bases.iter().map(|(s, b, _)| (s.clone(), b.clone())).collect(),
         }
     }
 }

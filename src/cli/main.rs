@@ -92,6 +92,7 @@ fn run(cli: &Cli, terminal: &Terminal) -> Result<Outcome, Failure> {
         Command::Compare(compare) => commands::compare::run(compare, &cli.schedules, terminal),
         Command::Brief(brief) => commands::brief::run(brief, &cli.schedules, terminal),
         Command::Curve(curve) => commands::curve::run(curve, &cli.schedules, terminal),
+        Command::Draws(draws) => commands::draws::run(draws, &cli.schedules, terminal),
         Command::Rate(rate) => commands::rate::run(rate, terminal),
         Command::Schedules(schedules) => commands::schedules::run(schedules, &cli.schedules),
         Command::Names(names) => commands::names::run(names, terminal),

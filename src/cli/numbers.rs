@@ -17,19 +17,25 @@ pub fn shortest_or_blank(x: Option<f64>) -> String {
 pub fn money(x: f64) -> String {
     let text = if x.abs() < 1000.0 { format!("{:.2}", x.abs()) } else { format!("{:.0}", x.abs()) };
     let (whole, decimals) = text.split_once('.').map_or((text.as_str(), ""), |(w, d)| (w, d));
-    let mut grouped = String::new();
-    for (i, digit) in whole.chars().enumerate() {
-        if i > 0 && (whole.len() - i) % 3 == 0 {
-            grouped.push(',');
-        }
-        grouped.push(digit);
-    }
+    let mut grouped = grouped(whole);
     if !decimals.is_empty() {
         grouped.push('.');
         grouped.push_str(decimals);
     }
     let zero = grouped.chars().all(|c| matches!(c, '0' | '.' | ','));
     if x < 0.0 && !zero { format!("-{grouped}") } else { grouped }
+}
+
+/// Digits with their thousands apart: 10,000.
+pub fn grouped(digits: &str) -> String {
+    let mut grouped = String::new();
+    for (i, digit) in digits.chars().enumerate() {
+        if i > 0 && (digits.len() - i).is_multiple_of(3) {
+            grouped.push(',');
+        }
+        grouped.push(digit);
+    }
+    grouped
 }
 
 /// A number of things: "1 cell", "2 cells".

@@ -110,6 +110,9 @@ pub fn report(input: &str, output: &str, report: &Report) -> String {
         }
         text.push_str(&format!("Basis   {}\n        {}\n", option.basis, option.basis_words));
         text.push_str(&format!("Base    {}\nTiming  {}\n", option.base, option.timing));
+        if let Some(prices) = &option.prices {
+            text.push_str(&format!("Prices  {prices}\n"));
+        }
     }
     text.push('\n');
     let over =
@@ -155,8 +158,8 @@ fn not_valued(rows: &[String]) -> String {
 fn grouped(options: &[OptionReport]) -> Vec<(Vec<&str>, &OptionReport)> {
     let mut groups: Vec<(Vec<&str>, &OptionReport)> = Vec::new();
     for option in options {
-        let same =
-            |o: &OptionReport| o.basis == option.basis && o.base == option.base && o.timing == option.timing;
+        let of = |o: &OptionReport| (o.basis.clone(), o.base.clone(), o.timing.clone(), o.prices.clone());
+        let same = |o: &OptionReport| of(o) == of(option);
         match groups.iter_mut().find(|(_, o)| same(o)) {
             Some((names, _)) => names.push(&option.name),
             None => groups.push((vec![&option.name], option)),
@@ -256,6 +259,9 @@ fn details(option: &OptionReport) -> String {
         ));
     }
     text.push_str(".\n");
+    for (stream, basis, words) in &option.stream_bases {
+        text.push_str(&format!("    {stream} on a basis of its own: {basis}. {words}\n"));
+    }
     if let Some(companion) = &option.companion {
         text.push_str(&format!(
             "    Beside it, on {}: PV benefits {}, PV costs {}, NPV {}. {}\n",

@@ -67,11 +67,11 @@ pub(crate) fn finite(name: &'static str, value: f64) -> Result<()> {
     Err(Error::new(ErrorKind::NotFinite, name, format!("{name} is {value}, not a finite number")))
 }
 
-pub(super) fn rate(value: f64) -> Result<()> {
+pub(crate) fn rate(value: f64) -> Result<()> {
     RATE.check(value)
 }
 
-pub(super) fn growth(value: f64) -> Result<()> {
+pub(crate) fn growth(value: f64) -> Result<()> {
     GROWTH.check(value)
 }
 
@@ -91,11 +91,11 @@ pub(crate) fn elasticity(value: f64) -> Result<()> {
     ELASTICITY.check(value)
 }
 
-pub(super) fn preference(value: f64) -> Result<()> {
+pub(crate) fn preference(value: f64) -> Result<()> {
     PREFERENCE.check(value)
 }
 
-pub(super) fn hazard(value: f64) -> Result<()> {
+pub(crate) fn hazard(value: f64) -> Result<()> {
     HAZARD.check(value)
 }
 

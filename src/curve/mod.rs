@@ -14,7 +14,10 @@ mod ramsey;
 mod regimes;
 mod years;
 
-pub(crate) use checks::{elasticity as check_elasticity, finite as check_finite};
+pub(crate) use checks::{
+    elasticity as check_elasticity, finite as check_finite, growth as check_growth, hazard as check_hazard,
+    preference as check_preference, rate as check_rate,
+};
 pub use domain::Domain;
 pub use parts::Parts;
 

@@ -1,7 +1,7 @@
 //! The figures of a rate as texts of their own: percentages, hazards, tax brackets.
 use super::cursor::{Parsed, Parser};
 use super::number::{of_decimal, of_percent};
-use crate::{Hazard, Result, Stated, TaxBracket};
+use crate::{Error, Hazard, Result, Stated, TaxBracket};
 
 /// Reads a percentage such as `0.5%`, as a rate line does.
 ///
@@ -108,12 +108,23 @@ fn comma(parser: &mut Parser, what: &str) -> Parsed<()> {
 }
 
 /// Reads the whole text; an error is about `argument`.
-fn read<T>(argument: &'static str, text: &str, value: impl FnOnce(&mut Parser) -> Parsed<T>) -> Result<T> {
+pub(super) fn read<T>(
+    argument: &'static str,
+    text: &str,
+    value: impl FnOnce(&mut Parser) -> Parsed<T>,
+) -> Result<T> {
     let whole = || {
-        let mut parser = Parser::new(text)?;
+        let mut parser = Parser::new(text).map_err(|fault| not_a_line(&fault.error))?;
         let value = value(&mut parser)?;
         parser.end()?;
         Ok(value)
     };
     whole().map_err(|fault: super::Fault| fault.explained(text).about(argument))
+}
+
+/// The lexer's error about a stray character, which speaks of rate lines.
+fn not_a_line(error: &Error) -> Error {
+    let message = error.message().replace(" in a rate line", " here").replace("the rate line", "the text");
+    let made = Error::new(error.kind(), error.argument(), message);
+    error.at().map_or(made.clone(), |at| made.with_at(at))
 }

@@ -2,6 +2,7 @@
 
 mod clauses;
 mod cursor;
+mod distribution;
 mod figures;
 mod lexer;
 mod number;

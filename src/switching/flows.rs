@@ -2,32 +2,7 @@
 
 use super::law::Law;
 use crate::perpetuity::MOST;
-use crate::{Error, ErrorKind, Result, check};
-
-/// Flows that go on for ever after a stream's last one: flow x (1 + growth)^(k every) at offsets start + k every, k = 1,
-/// 2, ...
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Endless {
-    /// Offset of the last flow before them, in years.
-    pub start: f64,
-    /// That last flow, with its sign in the net.
-    pub flow: f64,
-    /// Growth a year, above -1.
-    pub growth: f64,
-    /// Years between two flows, above 0.
-    pub every: f64,
-}
-
-/// The net flows of an option, or of one option less another.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct NetFlows<'a> {
-    /// Offsets in years, whole or not, any order, repeats allowed.
-    pub offsets: &'a [f64],
-    /// As many flows; benefits positive.
-    pub flows: &'a [f64],
-    /// What goes on for ever.
-    pub endless: &'a [Endless],
-}
+use crate::{Error, ErrorKind, OptionFlows, Perpetual, Result, check};
 
 /// Flow, and the years that multiply each part of the law.
 pub(super) type Row = (f64, Vec<f64>);
@@ -45,19 +20,19 @@ pub(super) struct Terms {
 /// Kinds of endless flows (growth and step) allowed together: each doubles the terms.
 const MOST_KINDS: usize = 6;
 
-impl NetFlows<'_> {
+impl OptionFlows<'_> {
     pub(super) fn check(&self) -> Result<()> {
         check::same_length(("offsets", self.offsets), ("flows", self.flows))?;
         check::finite_all("offsets", self.offsets)?;
         check::finite_all("flows", self.flows)?;
-        for (index, endless) in self.endless.iter().enumerate() {
-            let numbers = [endless.start, endless.flow, endless.growth, endless.every];
-            check::finite_all("endless", &numbers).map_err(|error| error.with_index(index))?;
-            if !(endless.growth > -1.0 && endless.every > 0.0) {
+        for (index, endless) in self.perpetual.iter().enumerate() {
+            let numbers = [endless.start, endless.flow, endless.growth];
+            check::finite_all("perpetual", &numbers).map_err(|error| error.with_index(index))?;
+            if !(endless.growth > -1.0 && endless.every > 0) {
                 let message = format!("growth is {}, every {} years", endless.growth, endless.every);
-                return Err(Error::new(ErrorKind::RateRange, "endless", message)
+                return Err(Error::new(ErrorKind::RateRange, "perpetual", message)
                     .with_index(index)
-                    .with_hint("growth above -1, a step above 0"));
+                    .with_hint("growth above -1, every year or more rarely"));
             }
         }
         Ok(())
@@ -74,26 +49,26 @@ impl NetFlows<'_> {
                 rows.push((flow, law.weights(t).map_err(|error| error.with_index(index))?));
             }
         }
-        let endless: Vec<&Endless> = self.endless.iter().filter(|endless| endless.flow != 0.0).collect();
+        let endless: Vec<&Perpetual> = self.perpetual.iter().filter(|endless| endless.flow != 0.0).collect();
         let mut terms = Terms { rows, growth: Vec::new(), lasting: Vec::new() };
         if endless.is_empty() {
             return Ok(terms);
         }
         let Some((edge, lasting)) = law.lasting() else {
             let message = "flows for ever are not searched under a curve without a rate that lasts";
-            return Err(Error::new(ErrorKind::Unsupported, "endless", message).with_hint("flows that end"));
+            return Err(Error::new(ErrorKind::Unsupported, "perpetual", message).with_hint("flows that end"));
         };
-        let mut kinds: Vec<(f64, f64)> = endless.iter().map(|e| (e.growth, e.every)).collect();
-        kinds.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.total_cmp(&b.1)));
+        let mut kinds: Vec<(f64, u32)> = endless.iter().map(|e| (e.growth, e.every)).collect();
+        kinds.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)));
         kinds.dedup();
         if kinds.len() > MOST_KINDS {
             let message = format!("{} kinds of flows for ever, allowed up to {MOST_KINDS}", kinds.len());
             return Err(
-                Error::new(ErrorKind::Unsupported, "endless", message).with_hint("fewer kinds of tails")
+                Error::new(ErrorKind::Unsupported, "perpetual", message).with_hint("fewer kinds of tails")
             );
         }
         let mut firsts: Vec<Vec<Row>> = vec![Vec::new(); kinds.len()];
-        for (index, flow) in self.endless.iter().enumerate().filter(|(_, flow)| flow.flow != 0.0) {
+        for (index, flow) in self.perpetual.iter().enumerate().filter(|(_, flow)| flow.flow != 0.0) {
             let kind = kinds.iter().position(|kind| *kind == (flow.growth, flow.every)).unwrap_or(0);
             let first = flow.until(edge, law, &mut terms.rows).map_err(|error| error.with_index(index))?;
             firsts[kind].push(first);
@@ -112,19 +87,20 @@ impl NetFlows<'_> {
     }
 }
 
-impl Endless {
+impl Perpetual {
     /// Lists the flows before the last rate holds among the rows; the first of the others comes back.
     fn until(&self, edge: f64, law: &Law, rows: &mut Vec<Row>) -> Result<Row> {
-        if (edge - self.start) / self.every > MOST {
+        let every = f64::from(self.every);
+        if (edge - self.start) / every > MOST {
             let message = format!("the curve's last edge at offset {edge} is too far for flows for ever");
             return Err(
-                Error::new(ErrorKind::Unsupported, "endless", message).with_hint("an earlier last edge")
+                Error::new(ErrorKind::Unsupported, "perpetual", message).with_hint("an earlier last edge")
             );
         }
         let mut k = 1.0;
         loop {
-            let t = self.start + k * self.every;
-            let flow = self.flow * (k * self.every * self.growth.ln_1p()).exp();
+            let t = self.start + k * every;
+            let flow = self.flow * (k * every * self.growth.ln_1p()).exp();
             let row = (flow, law.weights(t)?);
             if t >= edge {
                 return Ok(row);
@@ -146,7 +122,8 @@ impl Terms {
 }
 
 /// The rows times 1 - z.
-fn less_next(rows: Vec<Row>, (growth, every): (f64, f64), lasting: &[f64]) -> Vec<Row> {
+fn less_next(rows: Vec<Row>, (growth, every): (f64, u32), lasting: &[f64]) -> Vec<Row> {
+    let every = f64::from(every);
     let ratio = (every * growth.ln_1p()).exp();
     let next = |(flow, years): &Row| {
         let years = years.iter().zip(lasting).map(|(a, b)| a + every * b).collect();

@@ -7,12 +7,10 @@ mod law;
 use std::fmt;
 
 use crate::roots::crossings;
-use crate::{Error, ErrorKind, Result, Spec, Where, check, internal_rates};
+use crate::{Error, ErrorKind, OptionFlows, Result, Spec, Where, check, internal_rates};
 use exponents::Exponents;
 use flows::Row;
 use law::{Law, Part};
-
-pub use flows::{Endless, NetFlows};
 
 /// A parameter of the basis.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -180,8 +178,8 @@ pub struct Switching {
 /// Analysis, 1966.
 ///
 /// ```
-/// use hence_core::{NetFlows, Parameter, RateLine, Where, switching_values};
-/// let net = NetFlows { offsets: &[0.0, 1.0], flows: &[-100.0, 104.0], endless: &[] };
+/// use hence_core::{OptionFlows, Parameter, RateLine, Where, switching_values};
+/// let net = OptionFlows { offsets: &[0.0, 1.0], flows: &[-100.0, 104.0], perpetual: &[] };
 /// let spec = RateLine::parse("preference 1.5%, elasticity 1, growth 2%")?.spec().clone();
 /// let search = |parameter: Parameter| {
 ///     switching_values(&net, &spec, &Where::default(), parameter, parameter.interval())
@@ -191,13 +189,13 @@ pub struct Switching {
 /// assert!((found.values[0] - 1.25).abs() < 1e-13 && found.values.len() == 1);
 /// assert!((search(Parameter::Growth)?.values[0] - 0.025).abs() < 1e-15);
 ///
-/// let none = NetFlows { flows: &[0.0, 0.0], ..net };
+/// let none = OptionFlows { flows: &[0.0, 0.0], ..net };
 /// let error = switching_values(&none, &spec, &Where::default(), Parameter::Rate, (0.0, 0.1)).unwrap_err();
 /// assert_eq!(error.to_string(), "flows: every flow is 0, so every rate is one of return (no-meaning)");
 /// # Ok::<(), hence_core::Error>(())
 /// ```
 pub fn switching_values(
-    net: &NetFlows,
+    net: &OptionFlows,
     spec: &Spec,
     at: &Where,
     parameter: Parameter,

@@ -1,7 +1,7 @@
 //! What a workbook says, resolved: options, years, streams and targets, each with its cells.
 
 use chrono::NaiveDate;
-use hence_core::Timing;
+use hence_core::{PriceBasis, Timing};
 
 use crate::problem::Problem;
 use crate::references::SheetRange;
@@ -104,6 +104,52 @@ pub struct Stream {
     pub residual: Option<Given<f64>>,
     /// What follows the last year.
     pub tail: Option<Given<hence_core::Tail>>,
+    /// Growth of its price against other prices, a fraction a year from the price base, from `growth_<stream>`.
+    pub growth: Option<Given<f64>>,
+    /// A basis of its own, from `basis_<stream>`; else it is discounted on the option's.
+    pub basis: Option<Given<String>>,
+}
+
+/// The prices that flows are entered and valued in, as far as they are stated.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Prices {
+    /// From `price_basis`.
+    pub declared: Option<Given<Declared>>,
+    /// From `prices`: where it is given, flows are entered in money of the day and made real by it.
+    pub levels: Option<Given<Levels>>,
+}
+
+/// What `price_basis` says.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Declared {
+    /// Constant prices, or money of the day.
+    pub basis: PriceBasis,
+    /// The year whose prices are meant; a financial year by its first calendar year.
+    pub year: Option<i32>,
+}
+
+/// The level of prices over the years.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Levels {
+    /// One level a year, above 0.
+    Index(Vec<f64>),
+    /// A steady rate of inflation, a fraction a year.
+    Inflation(f64),
+}
+
+impl Prices {
+    /// The prices in which flows are valued, where that is known.
+    pub fn valued(&self) -> Option<PriceBasis> {
+        match &self.levels {
+            Some(_) => Some(PriceBasis::Real),
+            None => self.declared.as_ref().map(|given| given.value.basis),
+        }
+    }
+
+    /// The year of the price base, where one is stated; else it is that of the base.
+    pub fn year(&self) -> Option<i32> {
+        self.declared.as_ref().and_then(|given| given.value.year)
+    }
 }
 
 /// A physical effect (tonnes, life-years), for cost per unit.
@@ -122,6 +168,8 @@ pub struct Effect {
 pub enum TargetRole {
     /// A factor a year.
     Factor,
+    /// A factor a year, on the basis of a stream.
+    StreamFactor(String),
     /// PV by year of a stream, or of the net where there is no stream.
     PvByYear(Option<String>),
     /// PV in one cell, of a stream or of the net.
@@ -192,6 +240,8 @@ pub struct Choice {
     pub basis: Given<String>,
     /// The timing as stated in the workbook, where it is.
     pub timing: Option<Given<Timing>>,
+    /// The prices of its flows.
+    pub prices: Prices,
     /// Index into [`Appraisal::axes`].
     pub axis: usize,
     /// Its streams, shared ones included.

@@ -2,9 +2,9 @@
 
 use std::collections::BTreeSet;
 
-use hence_core::Catalogue;
+use hence_core::{Basis, Catalogue};
 
-use crate::appraisal::Appraisal;
+use crate::appraisal::{Appraisal, Choice};
 use crate::outcome::ChoiceOutcome;
 use crate::problem::{Place, Problem};
 use crate::report::Companion;
@@ -20,12 +20,14 @@ pub(crate) fn companions(
     catalogue: &Catalogue,
     problems: &mut Vec<Problem>,
 ) -> Vec<Option<Companion>> {
-    let reaches = |outcome: &ChoiceOutcome| {
-        let (id, beyond) = outcome.basis.companion()?;
+    let reaches = |outcome: &ChoiceOutcome| -> Vec<String> {
         let reach = outcome.offsets.iter().copied().fold(0.0, f64::max);
-        (reach > beyond).then(|| id.to_owned())
+        let own = outcome.streams.iter().filter_map(|stream| stream.own.as_ref()).map(|own| &own.basis);
+        let all = std::iter::once(&outcome.basis).chain(own).filter_map(Basis::companion);
+        all.filter(|(_, beyond)| reach > *beyond).map(|(id, _)| id.to_owned()).collect()
     };
-    let wanted: BTreeSet<String> = outcomes.iter().filter_map(reaches).collect();
+    let wanted: BTreeSet<String> = outcomes.iter().flat_map(reaches).collect();
+    let wants = |basis: &Basis| basis.companion().is_some_and(|(id, _)| wanted.contains(id));
     let mut beside = appraisal.clone();
     let mut changed = vec![false; outcomes.len()];
     let mut failed = |message: String| {
@@ -33,16 +35,20 @@ pub(crate) fn companions(
         problems.push(problem.hint("value the workbook on the companion schedule by itself, with --basis"));
     };
     for (i, (choice, outcome)) in beside.choices.iter_mut().zip(outcomes).enumerate() {
-        if outcome.basis.companion().is_none_or(|(id, _)| !wanted.contains(id)) {
-            continue;
-        }
-        match outcome.basis.beside(catalogue) {
-            Ok(Some(basis)) => {
-                choice.basis.value = basis.canonical();
-                changed[i] = true;
+        let own = choice.streams.iter_mut().zip(&outcome.streams);
+        let own = own.filter_map(|(s, o)| Some((s.basis.as_mut()?, &o.own.as_ref()?.basis)));
+        for (given, basis) in std::iter::once((&mut choice.basis, &outcome.basis)).chain(own) {
+            if !wants(basis) {
+                continue;
             }
-            Ok(None) => {}
-            Err(error) => failed(format!("the schedule to be run beside is not known: {error}")),
+            match basis.beside(catalogue) {
+                Ok(Some(basis)) => {
+                    given.value = basis.canonical();
+                    changed[i] = true;
+                }
+                Ok(None) => {}
+                Err(error) => failed(format!("the schedule to be run beside is not known: {error}")),
+            }
         }
     }
     if !changed.contains(&true) {
@@ -50,19 +56,29 @@ pub(crate) fn companions(
     }
     match value(&beside, catalogue) {
         Ok((outcomes, _)) => {
-            let make = |(outcome, changed): (&ChoiceOutcome, bool)| {
-                let id = outcome.basis.schedule().map(|schedule| schedule.id().to_owned());
-                id.filter(|_| changed).map(|id| Companion {
-                    id,
-                    words: outcome.basis.words(),
-                    totals: *outcome.totals(),
-                })
+            let make = |((outcome, choice), changed): ((&ChoiceOutcome, &Choice), bool)| {
+                changed.then(|| companion(outcome, choice))
             };
-            outcomes.iter().zip(changed).map(make).collect()
+            outcomes.iter().zip(&appraisal.choices).zip(changed).map(make).collect()
         }
         Err(error) => {
             failed(format!("the schedule to be run beside cannot value the workbook: {error}"));
             vec![None; outcomes.len()]
         }
     }
+}
+
+/// What an option comes to beside, with every schedule it was valued on.
+fn companion(outcome: &ChoiceOutcome, choice: &Choice) -> Companion {
+    let id =
+        |basis: &Basis| basis.schedule().map_or_else(|| basis.canonical(), |known| known.id().to_owned());
+    let mut companion =
+        Companion { id: id(&outcome.basis), words: outcome.basis.words(), totals: *outcome.totals() };
+    for (stream, valued) in choice.streams.iter().zip(&outcome.streams) {
+        if let Some(own) = &valued.own {
+            companion.id.push_str(&format!(" ({} on {})", stream.name, id(&own.basis)));
+            companion.words.push_str(&format!(". {} on {}", stream.name, own.basis.words()));
+        }
+    }
+    companion
 }

@@ -15,7 +15,7 @@ use crate::report::Status;
 use crate::resolve::{Options, resolve};
 use crate::valuation::{from_core, value};
 
-pub use tables::{book, change_words, heading, note, shown, words};
+pub use tables::{book, change_words, heading, remark, shown, words};
 
 pub use search::{Change, Entry, MULTIPLIERS, Moved};
 use search::{npv_at, ramsey_basis, search};

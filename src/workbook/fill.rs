@@ -8,6 +8,7 @@ use sha2::{Digest, Sha256};
 
 use crate::appraisal::{Appraisal, Covered, Given, Setting, Stated};
 use crate::companions::companions;
+use crate::compare::sensitivity;
 use crate::follow;
 use crate::graft::{Graft, graft};
 use crate::layout::Layout;
@@ -41,6 +42,8 @@ pub struct FillRequest {
     pub formulas: bool,
     /// Formulas found in targets are replaced, not compared.
     pub replace_formulas: bool,
+    /// Rate lines or ids of schedules to value it on besides, for the sensitivity sheet.
+    pub against: Vec<String>,
     /// For the audit summary.
     pub as_of: Option<String>,
     /// For the audit summary.
@@ -55,6 +58,7 @@ impl Default for FillRequest {
             roles: Vec::new(),
             formulas: true,
             replace_formulas: false,
+            against: Vec::new(),
             as_of: None,
             by: None,
         }
@@ -121,6 +125,8 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     let (outcomes, found) = value(&appraisal, catalogue)?;
     problems.extend(found);
     let companions = companions(&appraisal, &outcomes, catalogue, &mut problems);
+    let sensitivity = sensitivity(&appraisal, &outcomes, &request.against, catalogue)?;
+    problems.extend(sensitivity.comparison.problems.iter().cloned());
     let names = SheetNames::choose(&foreign_sheets(&book, &previous));
     let layout = Layout::new(&appraisal, &outcomes, &names);
 
@@ -174,6 +180,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         changes: &plan.changes,
         problems: &problems,
         companions: &companions,
+        sensitivity: &sensitivity,
         carried: &carried,
         differs: &differs(),
     };
@@ -414,7 +421,11 @@ fn foreign_sheets(book: &Workbook, previous: &[OwnSheet]) -> Vec<String> {
 }
 
 fn meta(package: &Package, outcomes: &[ChoiceOutcome], request: &FillRequest) -> Meta {
-    let bases: String = outcomes.iter().map(|outcome| outcome.basis.canonical() + "\n").collect();
+    let of = |outcome: &ChoiceOutcome| -> String {
+        let own = outcome.streams.iter().filter_map(|stream| stream.own.as_ref()).map(|own| &own.basis);
+        std::iter::once(&outcome.basis).chain(own).map(|basis| basis.canonical() + "\n").collect()
+    };
+    let bases: String = outcomes.iter().map(of).collect();
     Meta {
         input_name: package.file_name().to_owned(),
         input_sha256: sha256(package.bytes()),

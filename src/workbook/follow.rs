@@ -54,7 +54,8 @@ pub fn unknown(appraisal: &Appraisal, stale: &Stale, cells: &[TargetCell]) -> Ve
     let flows = appraisal.choices.iter().flat_map(|choice| &choice.streams).map(|stream| &stream.at);
     let years = appraisal.axes.iter().map(|axis| &axis.at);
     let settings = appraisal.settings.iter().map(|setting| &setting.at);
-    let follow = flows.chain(years).chain(settings).filter(|at| any(stale, at));
+    let levels = appraisal.choices.iter().filter_map(|choice| choice.prices.levels.as_ref()?.at.as_ref());
+    let follow = flows.chain(years).chain(settings).chain(levels).filter(|at| any(stale, at));
     kept.chain(follow).cloned().collect()
 }
 

@@ -105,16 +105,22 @@ pub fn residual(stream: &Stream, home: &str) -> Option<String> {
     })
 }
 
-/// Where the factors of an option stand that formulas may use: the analyst's own factor cells, if
+/// Where the factors of an option (of a stream, where it has a basis of its own) stand that formulas may use: the analyst's own factor cells, if
 /// hence fills them or found them in agreement.
 pub fn analyst_factors<'a>(
     appraisal: &'a Appraisal,
     layout: &Layout,
     outcomes: &[ChoiceOutcome],
     choice: usize,
+    stream: Option<usize>,
 ) -> Option<&'a SheetRange> {
     let own = format!("INDEX({}!", quote_sheet(&layout.names.discounting));
-    let factors = &outcomes[choice].factors;
+    let factors = stream.map_or(&outcomes[choice].factors[..], |s| outcomes[choice].factors_of(s));
+    // A stream on its option's basis uses its option's factors.
+    let role =
+        stream.filter(|&s| outcomes[choice].streams[s].own.is_some()).map_or(TargetRole::Factor, |s| {
+            TargetRole::StreamFactor(appraisal.choices[choice].streams[s].name.clone())
+        });
     let usable = |(i, held): (usize, &Held)| match held {
         Held::Blank | Held::Number(_) => true,
         Held::Formula { text, value, .. } => {
@@ -126,7 +132,7 @@ pub fn analyst_factors<'a>(
     appraisal.choices[choice]
         .targets
         .iter()
-        .filter(|t| t.role == TargetRole::Factor && t.held.len() == factors.len())
+        .filter(|t| t.role == role && t.held.len() == factors.len())
         .find(|t| t.held.iter().enumerate().all(usable))
         .map(|t| &t.at)
 }
@@ -144,23 +150,30 @@ pub fn pv_expression(
     let flows = &appraisal.choices[choice].streams[stream];
     let axis = &appraisal.axes[appraisal.choices[choice].axis];
     let labels = refer(home, &layout.labels(choice));
-    let block = refer(home, &layout.factors(choice));
+    let block = refer(home, &layout.stream_factors(choice, stream));
     let cells = refer(home, &flows.at);
-    let factors = analyst_factors(appraisal, layout, outcomes, choice);
-    let product = match (factors, axis.direction) {
-        (Some(at), _) => format!("SUMPRODUCT({cells},{})", refer(home, at)),
-        (None, Direction::Down) => format!("SUMPRODUCT({cells},{block})"),
+    let factors = analyst_factors(appraisal, layout, outcomes, choice, Some(stream));
+    let years = refer(home, &axis.at);
+    let multipliers = layout.multipliers(choice, stream).map(|at| refer(home, &at));
+    let product = match (factors.map(|at| refer(home, at)), axis.direction, &multipliers) {
+        (Some(at), _, None) => format!("SUMPRODUCT({cells},{at})"),
+        (Some(at), Direction::Down, Some(by)) => format!("SUMPRODUCT({cells},{at},{by})"),
+        (None, Direction::Down, None) => format!("SUMPRODUCT({cells},{block})"),
+        (None, Direction::Down, Some(by)) => format!("SUMPRODUCT({cells},{block},{by})"),
         // A comparison of a column with a row is a table in both programs, without array entry.
-        (None, Direction::Across) => {
-            format!("SUMPRODUCT(({labels}={})*{block}*{cells})", refer(home, &axis.at))
+        (None, Direction::Across, None) => format!("SUMPRODUCT(({labels}={years})*{block}*{cells})"),
+        (None, Direction::Across, Some(by)) => format!("SUMPRODUCT(({labels}={years})*{block}*{by}*{cells})"),
+        (Some(at), Direction::Across, Some(by)) => {
+            format!("SUMPRODUCT(({labels}={years})*{by}*{cells}*{at})")
         }
     };
     let mut text = format!("{}{product}", scale(flows, home));
     let last = outcomes[choice].factors.len().saturating_sub(1);
     if let Some(residual) = residual(flows, home) {
-        let at = factors.map_or_else(|| layout.factors(choice), SheetRange::clone);
+        let at = factors.map_or_else(|| layout.stream_factors(choice, stream), SheetRange::clone);
         let cell = nth(at.range, last);
         text.push_str(&format!("{residual}*{}{}", prefix(home, &at.sheet), cell_text(cell, true, true)));
+        text.push_str(&times_last(layout, choice, stream, home));
     }
     if flows.tail.is_some() {
         let cell = layout.cell(layout.rows[choice].streams[stream], Column::Tail);
@@ -171,9 +184,36 @@ pub fn pv_expression(
 }
 
 /// The undiscounted total of one stream as an expression for a formula on sheet `home`.
-pub fn sum_expression(stream: &Stream, home: &str) -> String {
-    let total = format!("{}SUM({})", scale(stream, home), refer(home, &stream.at));
-    format!("{total}{}", residual(stream, home).unwrap_or_default())
+pub fn sum_expression(
+    appraisal: &Appraisal,
+    layout: &Layout,
+    choice: usize,
+    stream: usize,
+    home: &str,
+) -> String {
+    let flows = &appraisal.choices[choice].streams[stream];
+    let axis = &appraisal.axes[appraisal.choices[choice].axis];
+    let cells = refer(home, &flows.at);
+    let sum = match (layout.multipliers(choice, stream), axis.direction) {
+        (None, _) => format!("SUM({cells})"),
+        (Some(by), Direction::Down) => format!("SUMPRODUCT({cells},{})", refer(home, &by)),
+        (Some(by), Direction::Across) => {
+            let (labels, by) = (refer(home, &layout.labels(choice)), refer(home, &by));
+            format!("SUMPRODUCT(({labels}={})*{by}*{cells})", refer(home, &axis.at))
+        }
+    };
+    let total = format!("{}{sum}", scale(flows, home));
+    match residual(flows, home) {
+        Some(residual) => format!("{total}{residual}{}", times_last(layout, choice, stream, home)),
+        None => total,
+    }
+}
+
+/// The multiplier of the last year as `*Discounting!$G$30`; empty where flows are not multiplied.
+fn times_last(layout: &Layout, choice: usize, stream: usize, home: &str) -> String {
+    let last = layout.multipliers(choice, stream).map(|at| at.range.last);
+    let text = |cell| format!("*{}{}", prefix(home, &layout.names.discounting), cell_text(cell, true, true));
+    last.map(text).unwrap_or_default()
 }
 
 /// One cell as a range.
@@ -196,9 +236,14 @@ pub fn expected(
     let number = |x: f64| vec![Cached::Number(x)];
     match &target.role {
         TargetRole::Factor => outcome.factors.iter().map(|&d| Cached::Number(d)).collect(),
+        TargetRole::StreamFactor(name) => {
+            let own = find(&appraisal.choices[choice], name).map(|s| outcome.factors_of(s));
+            own.unwrap_or(&outcome.factors).iter().map(|&d| Cached::Number(d)).collect()
+        }
         TargetRole::Rates => outcome.forward.iter().map(|r| Cached::Number(r.unwrap_or(0.0))).collect(),
         TargetRole::PvByYear(None) => {
-            outcome.net.iter().zip(&outcome.factors).map(|(x, d)| Cached::Number(x * d)).collect()
+            let sides = || appraisal.choices[choice].streams.iter().map(|s| side(s.kind));
+            (0..outcome.net.len()).map(|i| Cached::Number(outcome.net_value(i, sides()))).collect()
         }
         TargetRole::PvByYear(Some(name)) => match stream(name) {
             Some(s) => s.pv_by_year.iter().map(|&x| Cached::Number(x)).collect(),
@@ -296,13 +341,18 @@ impl Maker<'_> {
         let sums = self.layout.sums(self.choice);
         match &target.role {
             TargetRole::Factor => Some(self.look_up(&self.layout.factors(self.choice), i)),
+            TargetRole::StreamFactor(name) => {
+                let factors = self.layout.stream_factors(self.choice, find(choice, name)?);
+                Some(self.look_up(&factors, i))
+            }
             TargetRole::Rates => Some(self.look_up(&self.layout.forward(self.choice), i)),
             TargetRole::PvByYear(Some(name)) => {
-                let flow = self.flow(&choice.streams[find(choice, name)?], i, true);
-                let text = format!("{flow}*{}", self.factor(i));
+                let s = find(choice, name)?;
+                let text = format!("{}*{}", self.flow(s, i, true), self.factor(Some(s), i));
                 (text.len() <= MAX_FORMULA).then_some(text)
             }
             TargetRole::PvByYear(None) => {
+                let own = self.outcomes[self.choice].streams.iter().any(|stream| stream.own.is_some());
                 let mut sum = String::new();
                 for (k, stream) in choice.streams.iter().enumerate() {
                     let plus = side(stream.kind) > 0.0;
@@ -313,9 +363,12 @@ impl Maker<'_> {
                     } else {
                         ""
                     });
-                    sum.push_str(&self.flow(stream, i, false));
+                    sum.push_str(&self.flow(k, i, false));
+                    if own {
+                        sum.push_str(&format!("*{}", self.factor(Some(k), i)));
+                    }
                 }
-                let text = format!("({sum})*{}", self.factor(i));
+                let text = if own { sum.clone() } else { format!("({sum})*{}", self.factor(None, i)) };
                 // A number is left where so many streams do not fit into one formula.
                 (!sum.is_empty() && text.len() <= MAX_FORMULA).then_some(text)
             }
@@ -352,25 +405,34 @@ impl Maker<'_> {
     }
 
     /// The analyst's factor cell where there is one, else the look-up.
-    fn factor(&self, i: usize) -> String {
-        match analyst_factors(self.appraisal, self.layout, self.outcomes, self.choice) {
+    fn factor(&self, stream: Option<usize>, i: usize) -> String {
+        match analyst_factors(self.appraisal, self.layout, self.outcomes, self.choice, stream) {
             Some(at) => {
                 let down = at.range.last.row > at.range.first.row;
                 format!("{}{}", prefix(self.home, &at.sheet), cell_text(nth(at.range, i), down, !down))
             }
-            None => self.look_up(&self.layout.factors(self.choice), i),
+            None => {
+                let factors = stream.map_or_else(
+                    || self.layout.factors(self.choice),
+                    |s| self.layout.stream_factors(self.choice, s),
+                );
+                self.look_up(&factors, i)
+            }
         }
     }
 
     /// One flow after unit, sign, uplift and residual; in brackets where it is a sum.
-    fn flow(&self, stream: &Stream, i: usize, leading: bool) -> String {
+    fn flow(&self, s: usize, i: usize, leading: bool) -> String {
+        let stream = &self.appraisal.choices[self.choice].streams[s];
+        let by = self.layout.multipliers(self.choice, s).map(|at| self.look_up(&at, i));
+        let by = by.map(|by| format!("*{by}")).unwrap_or_default();
         let cell = format!("{}{}", prefix(self.home, &stream.at.sheet), nth(stream.at.range, i));
         let text = format!("{}{cell}", scale(stream, self.home));
         let last = i + 1 == self.outcomes[self.choice].factors.len();
         match residual(stream, self.home).filter(|_| last) {
-            Some(residual) => format!("({text}{residual})"),
-            None if !leading && text.starts_with('-') => format!("({text})"),
-            None => text,
+            Some(residual) => format!("({text}{residual}){by}"),
+            None if !leading && text.starts_with('-') => format!("({text}{by})"),
+            None => format!("{text}{by}"),
         }
     }
 }

@@ -1,5 +1,7 @@
 //! Where everything stands on the sheet Discounting, known before a formula or the sheet is made.
 
+use std::collections::BTreeMap;
+
 use crate::appraisal::{Appraisal, Label};
 use crate::outcome::ChoiceOutcome;
 use crate::references::{Cell, Range, SheetRange};
@@ -11,6 +13,8 @@ pub const HEADING_ROW: u32 = 6;
 pub const DATA_ROW: u32 = 7;
 /// Columns of a block, and of the gap after it.
 const BLOCK_WIDTH: u32 = 5;
+/// Columns of a series of multipliers, and of the gap after it.
+const SERIES_WIDTH: u32 = 3;
 
 /// A block of four columns (year, offset, forward rate, factor), shared by all options whose years,
 /// base, curve and timing are the same.
@@ -18,8 +22,21 @@ const BLOCK_WIDTH: u32 = 5;
 pub struct Block {
     /// The first option that uses it, whose axis and outcome give its numbers.
     pub choice: usize,
-    /// All options that use it.
+    /// The stream of that option whose own basis it holds; else it is the option's.
+    pub stream: Option<usize>,
+    /// All options that use it, or one of whose streams does.
     pub choices: Vec<usize>,
+    /// Its first column.
+    pub column: u32,
+    /// Its number of years.
+    pub rows: u32,
+}
+
+/// Two columns (year, multiplier), shared by all streams whose flows are multiplied alike, year by year.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Series {
+    /// Option and stream that use it, the first of which gives its numbers.
+    pub users: Vec<(usize, usize)>,
     /// Its first column.
     pub column: u32,
     /// Its number of years.
@@ -80,6 +97,10 @@ pub struct Layout {
     pub blocks: Vec<Block>,
     /// The block of each option.
     pub block_of: Vec<usize>,
+    /// The block of each stream that has a basis of its own, by option and stream.
+    pub own_block_of: BTreeMap<(usize, usize), usize>,
+    /// Multipliers of flows, after the blocks; none where no flow is adjusted by year.
+    pub series: Vec<Series>,
     /// The first column of the table of present values.
     pub table: u32,
     /// Rows of each option in that table.
@@ -96,7 +117,8 @@ impl Layout {
             let same = |block: &Block| {
                 let other = &appraisal.choices[block.choice];
                 let (a, b) = (&outcomes[i], &outcomes[block.choice]);
-                appraisal.axes[other.axis].labels == *labels
+                block.stream.is_none()
+                    && appraisal.axes[other.axis].labels == *labels
                     && other.base.value == choice.base.value
                     && a.curve == b.curve
                     && a.basis == b.basis
@@ -105,13 +127,15 @@ impl Layout {
             let found = blocks.iter().position(same).unwrap_or_else(|| {
                 let column = blocks.len() as u32 * BLOCK_WIDTH;
                 let rows = labels.len() as u32;
-                blocks.push(Block { choice: i, choices: Vec::new(), column, rows });
+                blocks.push(Block { choice: i, stream: None, choices: Vec::new(), column, rows });
                 blocks.len() - 1
             });
             blocks[found].choices.push(i);
             block_of.push(found);
         }
-        let table = blocks.len() as u32 * BLOCK_WIDTH;
+        let own_block_of = own_blocks(appraisal, outcomes, &mut blocks);
+        let series = series(appraisal, outcomes, blocks.len() as u32 * BLOCK_WIDTH);
+        let table = blocks.len() as u32 * BLOCK_WIDTH + series.len() as u32 * SERIES_WIDTH;
         let mut free = DATA_ROW..;
         let mut next = || free.next().unwrap_or(u32::MAX);
         let mut rows = Vec::new();
@@ -125,12 +149,38 @@ impl Layout {
             // A blank row between options.
             next();
         }
-        Layout { names: names.clone(), blocks, block_of, table, rows }
+        Layout { names: names.clone(), blocks, block_of, own_block_of, series, table, rows }
     }
 
     /// The block of an option.
     pub fn block(&self, choice: usize) -> &Block {
         &self.blocks[self.block_of[choice]]
+    }
+
+    /// The block of a stream: that of its own basis, else its option's.
+    pub fn block_index(&self, choice: usize, stream: Option<usize>) -> usize {
+        let own = stream.and_then(|stream| self.own_block_of.get(&(choice, stream)));
+        own.copied().unwrap_or(self.block_of[choice])
+    }
+
+    /// The factors that a stream is discounted with.
+    pub fn stream_factors(&self, choice: usize, stream: usize) -> SheetRange {
+        let block = &self.blocks[self.block_index(choice, Some(stream))];
+        self.down(block.column + 3, block.rows)
+    }
+
+    /// Whose factors a block holds, in words: options, or a stream with its option where there are several.
+    pub fn whose(&self, k: usize, appraisal: &Appraisal) -> String {
+        let block = &self.blocks[k];
+        let name = |c: usize| appraisal.choices[c].name.clone();
+        let Some(_) = block.stream else {
+            return block.choices.iter().map(|&c| name(c)).collect::<Vec<_>>().join(", ");
+        };
+        let users = self.own_block_of.iter().filter(|(_, own)| **own == k).map(|((c, s), _)| {
+            let stream = &appraisal.choices[*c].streams[*s].name;
+            if appraisal.choices.len() > 1 { format!("{stream} ({})", name(*c)) } else { stream.clone() }
+        });
+        users.collect::<Vec<_>>().join(", ")
     }
 
     /// A cell of the table of present values.
@@ -163,12 +213,88 @@ impl Layout {
         self.rows[choice].increment.unwrap_or(self.rows[choice].absolute)
     }
 
+    /// The series of a stream, where its flows are multiplied by year.
+    pub fn series_of(&self, choice: usize, stream: usize) -> Option<usize> {
+        self.series.iter().position(|series| series.users.contains(&(choice, stream)))
+    }
+
+    /// The cells of the multipliers of a stream.
+    pub fn multipliers(&self, choice: usize, stream: usize) -> Option<SheetRange> {
+        let series = &self.series[self.series_of(choice, stream)?];
+        Some(self.down(series.column + 1, series.rows))
+    }
+
     fn column(&self, choice: usize, k: u32) -> SheetRange {
         let block = self.block(choice);
-        let cell = |row| Cell { row, col: block.column + k };
-        let range = Range { first: cell(DATA_ROW), last: cell(DATA_ROW + block.rows.max(1) - 1) };
+        self.down(block.column + k, block.rows)
+    }
+
+    /// So many cells of a column of numbers.
+    fn down(&self, col: u32, rows: u32) -> SheetRange {
+        let cell = |row| Cell { row, col };
+        let range = Range { first: cell(DATA_ROW), last: cell(DATA_ROW + rows.max(1) - 1) };
         SheetRange { sheet: self.names.discounting.clone(), range }
     }
+}
+
+/// Adds a block for every distinct basis that streams have of their own.
+fn own_blocks(
+    appraisal: &Appraisal,
+    outcomes: &[ChoiceOutcome],
+    blocks: &mut Vec<Block>,
+) -> BTreeMap<(usize, usize), usize> {
+    let mut own_block_of = BTreeMap::new();
+    for (c, choice) in appraisal.choices.iter().enumerate() {
+        for (s, stream) in outcomes[c].streams.iter().enumerate() {
+            let Some(own) = &stream.own else { continue };
+            let same = |block: &Block| {
+                let Some(other) = block.stream else { return false };
+                let from = &appraisal.choices[block.choice];
+                from.axis == choice.axis
+                    && from.base == choice.base
+                    && outcomes[block.choice].timing == outcomes[c].timing
+                    && outcomes[block.choice].streams[other].own.as_ref() == Some(own)
+            };
+            let found = blocks.iter().position(same).unwrap_or_else(|| {
+                let column = blocks.len() as u32 * BLOCK_WIDTH;
+                let rows = own.factors.len() as u32;
+                blocks.push(Block { choice: c, stream: Some(s), choices: Vec::new(), column, rows });
+                blocks.len() - 1
+            });
+            if !blocks[found].choices.contains(&c) {
+                blocks[found].choices.push(c);
+            }
+            own_block_of.insert((c, s), found);
+        }
+    }
+    own_block_of
+}
+
+/// Every distinct series of multipliers, from column `first` on.
+fn series(appraisal: &Appraisal, outcomes: &[ChoiceOutcome], first: u32) -> Vec<Series> {
+    let mut all: Vec<Series> = Vec::new();
+    for (c, choice) in appraisal.choices.iter().enumerate() {
+        for (s, stream) in choice.streams.iter().enumerate() {
+            let Some(values) = &outcomes[c].streams[s].multipliers else { continue };
+            let same = |series: &&mut Series| {
+                let (other_choice, other) = series.users[0];
+                let from = &appraisal.choices[other_choice];
+                from.axis == choice.axis
+                    && from.base == choice.base
+                    && from.prices == choice.prices
+                    && from.streams[other].growth == stream.growth
+                    && outcomes[other_choice].streams[other].multipliers.as_ref() == Some(values)
+            };
+            match all.iter_mut().find(same) {
+                Some(series) => series.users.push((c, s)),
+                None => {
+                    let column = first + all.len() as u32 * SERIES_WIDTH;
+                    all.push(Series { users: vec![(c, s)], column, rows: values.len() as u32 });
+                }
+            }
+        }
+    }
+    all
 }
 
 /// A label as a cell holds it.

@@ -3,6 +3,7 @@
 //! The only crate that knows a spreadsheet library. Numbers come from `hence_core`; what is written
 //! here is where they are read from, where they go, and the proof that comes with them.
 
+mod adjust;
 pub mod appraisal;
 pub mod brief;
 pub mod check;
@@ -10,7 +11,9 @@ mod clock;
 pub mod codes;
 mod companions;
 pub mod compare;
+pub mod dated;
 mod drawing;
+pub mod draws;
 pub mod fill;
 mod follow;
 pub mod formulas;

@@ -3,13 +3,13 @@
 use std::collections::BTreeMap;
 
 use hence_core::{
-    Curve, Endless, Eras, IRR_INTERVAL, cost_per_effect, discounted_payback, dot, era_shares, internal_rates,
+    Curve, Eras, IRR_INTERVAL, Tail, cost_per_effect, discounted_payback, dot, era_shares, internal_rates,
     mean_time, npv_per_budget, sum,
 };
 
 use crate::appraisal::{Choice, Stream, StreamKind};
 use crate::clock::Clock;
-use crate::outcome::{ChoiceOutcome, Flows, StreamOutcome};
+use crate::outcome::{ChoiceOutcome, StreamOutcome};
 use crate::roles::key;
 use crate::valuation::side;
 
@@ -21,30 +21,23 @@ const LISTED: f64 = 1_000.0;
 pub(crate) struct Further {
     /// Years after the base, flow and factor of each.
     flows: Vec<(f64, f64, f64)>,
-    /// The flows go on for ever, so those listed are not all; they start from the last year's years after the base.
-    endless: Option<Endless>,
+    /// The flows go on for ever, so those listed are not all.
+    endless: bool,
 }
 
 impl Further {
     /// Lists the flows that follow, each in the stream's own direction.
     pub fn of(
-        stream: &Stream,
+        tail: &Tail,
         last_flow: f64,
         clock: &Clock,
         curve: &Curve,
         base_year: Option<i32>,
     ) -> hence_core::Result<Self> {
-        let (Some(tail), Some(&last)) = (&stream.tail, clock.years.last()) else {
-            return Ok(Further::default());
-        };
-        let endless = tail.value.to.is_none().then(|| Endless {
-            start: last,
-            flow: last_flow,
-            growth: tail.value.growth,
-            every: f64::from(tail.value.every),
-        });
-        let up_to = if endless.is_some() { LISTED } else { f64::from(i32::MAX) };
-        let flows = tail.value.flows(last, last_flow, base_year, up_to)?;
+        let Some(&last) = clock.years.last() else { return Ok(Further::default()) };
+        let endless = tail.to.is_none();
+        let up_to = if endless { LISTED } else { f64::from(i32::MAX) };
+        let flows = tail.flows(last, last_flow, base_year, up_to)?;
         let valued = flows.into_iter().map(|(years, flow)| {
             let factor = curve.timed_factor(years, clock.timing)?;
             Ok((years, flow, factor))
@@ -59,36 +52,26 @@ pub(crate) struct Moments {
     dated: Vec<(f64, f64)>,
     /// Offset of the year and present value.
     valued: Vec<(f64, f64)>,
-    /// What goes on for ever, from the offset of its last year; those of its flows that are listed for payback are not
-    /// among the dated.
-    endless: Vec<Endless>,
+    /// Some flows go on for ever.
+    endless: bool,
 }
 
 impl Moments {
     /// Those of an option as it stands.
     pub fn of(choice: &Choice, outcome: &ChoiceOutcome, further: &[Further], clock: &Clock) -> Self {
-        let mut moments = Moments { dated: Vec::new(), valued: Vec::new(), endless: Vec::new() };
+        let mut moments = Moments { dated: Vec::new(), valued: Vec::new(), endless: false };
         for (i, (t, net)) in outcome.offsets.iter().zip(&outcome.net).enumerate() {
-            moments.add(clock, *t, *net, net * outcome.factors[i]);
+            let sides =
+                choice.streams.iter().map(|stream| side(stream.kind)).map(|(above, below)| above - below);
+            moments.add(clock, *t, *net, outcome.net_value(i, sides));
         }
         for (stream, further) in choice.streams.iter().zip(further) {
             let (above, below) = side(stream.kind);
             for (years, flow, factor) in &further.flows {
-                let (t, net) = (clock.offset(*years), flow * (above - below));
-                match further.endless {
-                    Some(_) => moments.valued.push((t, net * factor)),
-                    None => moments.add(clock, t, net, net * factor),
-                }
+                let net = flow * (above - below);
+                moments.add(clock, clock.offset(*years), net, net * factor);
             }
-            if let Some(endless) = further.endless {
-                let moment = |(start, share): (f64, f64)| Endless {
-                    start,
-                    flow: share * endless.flow * (above - below),
-                    ..endless
-                };
-                let at = clock.moments(clock.offset(endless.start));
-                moments.endless.extend(at.into_iter().map(moment));
-            }
+            moments.endless |= further.endless;
         }
         moments
     }
@@ -98,26 +81,15 @@ impl Moments {
         self.valued.push((t, value));
     }
 
-    /// The flows as they are dated, whatever they are worth.
-    pub fn flows(&self) -> Flows {
-        let (offsets, flows) = merged(&self.dated);
-        Flows { offsets, flows, endless: self.endless.clone() }
-    }
-
     /// These less those of the baseline, whose years may differ.
     pub fn less(&self, base: &Moments) -> Moments {
         let negative = |list: &[(f64, f64)]| list.iter().map(|(t, x)| (*t, -x)).collect::<Vec<_>>();
         Moments {
             dated: [self.dated.clone(), negative(&base.dated)].concat(),
             valued: [self.valued.clone(), negative(&base.valued)].concat(),
-            endless: [self.endless.clone(), against(&base.endless)].concat(),
+            endless: self.endless || base.endless,
         }
     }
-}
-
-/// Endless flows with the opposite sign.
-pub(crate) fn against(endless: &[Endless]) -> Vec<Endless> {
-    endless.iter().map(|endless| Endless { flow: -endless.flow, ..*endless }).collect()
 }
 
 /// Sums of flows at one offset, in order; offsets that differ by rounding alone are one.
@@ -132,10 +104,10 @@ pub(crate) fn merged(list: &[(f64, f64)]) -> (Vec<f64>, Vec<f64>) {
 
 /// Rates of return and payback.
 pub(crate) fn measure_net(outcome: &mut ChoiceOutcome, moments: &Moments) {
-    outcome.endless = !moments.endless.is_empty();
+    outcome.endless = moments.endless;
     outcome.irr.clear();
     outcome.irr_unresolved.clear();
-    if moments.endless.is_empty() {
+    if !moments.endless {
         let (offsets, flows) = merged(&moments.dated);
         // The one error possible is that every flow is 0: no rate is special then.
         if let Ok(found) = internal_rates(&offsets, &flows, IRR_INTERVAL) {
@@ -145,7 +117,7 @@ pub(crate) fn measure_net(outcome: &mut ChoiceOutcome, moments: &Moments) {
     }
     let (offsets, values) = merged(&moments.valued);
     outcome.payback = discounted_payback(&offsets, &values).unwrap_or_default();
-    if outcome.endless && outcome.totals().npv < 0.0 {
+    if moments.endless && outcome.totals().npv < 0.0 {
         // Flows beyond those listed pull it below zero in the end.
         outcome.payback.last = None;
     }
@@ -156,25 +128,26 @@ pub(crate) fn measure_gross(outcome: &mut ChoiceOutcome, further: &[Further], cl
     let eras = Eras::default();
     let mut years: Vec<(f64, f64)> = Vec::new();
     let mut moments: Vec<(f64, f64)> = Vec::new();
-    for (stream, further) in outcome.streams.iter().zip(further) {
-        let own = outcome.offsets.iter().zip(&stream.flows).zip(&outcome.factors);
+    for (s, (stream, further)) in outcome.streams.iter().zip(further).enumerate() {
+        let curve = stream.own.as_ref().map_or(&outcome.curve, |own| &own.curve);
+        let own = outcome.offsets.iter().zip(&stream.flows).zip(outcome.factors_of(s));
         let own = own.map(|((t, flow), factor)| (*t, *flow, *factor));
         let later = further.flows.iter().map(|(years, flow, factor)| (clock.offset(*years), *flow, *factor));
         for (t, flow, factor) in own.chain(later) {
             years.push((t, flow * factor));
             for (at, share) in clock.moments(t) {
                 // Where an averaged flow's halves stand, each has the factor of its own moment.
-                let factor = if share == 1.0 { factor } else { outcome.curve.factor(at).unwrap_or(factor) };
+                let factor = if share == 1.0 { factor } else { curve.factor(at).unwrap_or(factor) };
                 moments.push((at, share * flow * factor));
             }
         }
-        if further.endless.is_some() {
+        if further.endless {
             let listed: Vec<f64> = further.flows.iter().map(|(_, flow, factor)| flow * factor).collect();
             let beyond = eras.0.last().copied().unwrap_or(0.0).max(LISTED) + 1.0;
             years.push((beyond, stream.pv_tail - sum(&listed)));
         }
     }
-    let endless = further.iter().any(|further| further.endless.is_some());
+    let endless = further.iter().any(|further| further.endless);
     let (offsets, gross): (Vec<f64>, Vec<f64>) = years.into_iter().unzip();
     outcome.era_shares = era_shares(&offsets, &gross, &eras).unwrap_or_default();
     let (offsets, gross): (Vec<f64>, Vec<f64>) = moments.into_iter().unzip();

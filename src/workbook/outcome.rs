@@ -1,6 +1,8 @@
 //! The numbers of an appraisal under its basis: factors, present values and measures, by option.
 
-use hence_core::{Basis, Curve, Endless, NetFlows, Payback, Timing};
+use hence_core::{Basis, Curve, Payback, Timing, sum};
+
+use crate::dated::Flows;
 
 /// What one stream comes to.
 #[derive(Clone, Debug, PartialEq)]
@@ -15,6 +17,23 @@ pub struct StreamOutcome {
     pub pv_tail: f64,
     /// The sum of both.
     pub pv: f64,
+    /// What multiplied the flow of each year besides sign, unit and uplift (prices); none where nothing did.
+    pub multipliers: Option<Vec<f64>>,
+    /// What it was discounted on, where that is not the option's basis.
+    pub own: Option<OwnBasis>,
+}
+
+/// The basis of a stream that has its own, at the option's base, length and timing.
+#[derive(Clone, Debug, PartialEq)]
+pub struct OwnBasis {
+    /// The basis.
+    pub basis: Basis,
+    /// Its curve.
+    pub curve: Curve,
+    /// Factor of each year.
+    pub factors: Vec<f64>,
+    /// Forward rate of each year, as for an option.
+    pub forward: Vec<Option<f64>>,
 }
 
 /// Totals of an option, or of its increment over the baseline.
@@ -36,24 +55,6 @@ pub struct Totals {
     pub annual: Option<f64>,
 }
 
-/// The net flows of an option as it stands, what follows the last year included.
-#[derive(Clone, Debug, Default, PartialEq)]
-pub struct Flows {
-    /// Offsets in years, rising, each once; an averaged flow stands half at each end of its year.
-    pub offsets: Vec<f64>,
-    /// As many flows, benefits positive.
-    pub flows: Vec<f64>,
-    /// What goes on for ever.
-    pub endless: Vec<Endless>,
-}
-
-impl Flows {
-    /// As the library takes them.
-    pub fn net(&self) -> NetFlows<'_> {
-        NetFlows { offsets: &self.offsets, flows: &self.flows, endless: &self.endless }
-    }
-}
-
 /// What one option comes to.
 #[derive(Clone, Debug)]
 pub struct ChoiceOutcome {
@@ -67,6 +68,8 @@ pub struct ChoiceOutcome {
     pub base_words: String,
     /// The timing as a sentence with numbers.
     pub timing_sentence: String,
+    /// The prices of the flows in words, where the workbook says anything of them.
+    pub prices: Option<String>,
     /// Offset of each year's flow (with an averaged position: of the year's end).
     pub offsets: Vec<f64>,
     /// Factor of each year.
@@ -78,7 +81,7 @@ pub struct ChoiceOutcome {
     pub streams: Vec<StreamOutcome>,
     /// Net flow of each year (benefits and flows less costs and damages).
     pub net: Vec<f64>,
-    /// The same as dated flows, those that follow the last year included.
+    /// The same one by one as they are dated, those that follow the last year included.
     pub dated: Flows,
     /// N of the annual equivalent.
     pub service_years: u32,
@@ -107,6 +110,25 @@ pub struct ChoiceOutcome {
 }
 
 impl ChoiceOutcome {
+    /// The basis that a stream was discounted on.
+    pub fn basis_of(&self, stream: usize) -> &Basis {
+        self.streams[stream].own.as_ref().map_or(&self.basis, |own| &own.basis)
+    }
+
+    /// The factors that a stream was discounted with.
+    pub fn factors_of(&self, stream: usize) -> &[f64] {
+        self.streams[stream].own.as_ref().map_or(&self.factors, |own| &own.factors)
+    }
+
+    /// The present value of the net flow of a year; `sides` are +1 or -1 a stream.
+    pub(crate) fn net_value(&self, i: usize, sides: impl Iterator<Item = f64>) -> f64 {
+        if self.streams.iter().all(|stream| stream.own.is_none()) {
+            return self.net[i] * self.factors[i];
+        }
+        let terms = self.streams.iter().zip(sides).map(|(stream, side)| side * stream.pv_by_year[i]);
+        sum(&terms.collect::<Vec<_>>())
+    }
+
     /// The totals that rank, ratio and NPV use: the increment where there is a baseline.
     pub fn totals(&self) -> &Totals {
         self.increment.as_ref().unwrap_or(&self.absolute)

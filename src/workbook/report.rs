@@ -44,6 +44,8 @@ pub struct OptionReport {
     pub base: String,
     /// The timing as a sentence with numbers.
     pub timing: String,
+    /// The prices of the flows in words, where the workbook says anything of them.
+    pub prices: Option<String>,
     /// As it stands.
     pub absolute: Totals,
     /// Over the baseline, where there is one.
@@ -68,6 +70,8 @@ pub struct OptionReport {
     pub era_shares: Vec<f64>,
     /// NPV per unit of the constrained cost.
     pub npv_per_budget: Option<f64>,
+    /// Streams that have a basis of their own: name, the basis and in words.
+    pub stream_bases: Vec<(String, String, String)>,
     /// Effects by name: cost per unit undiscounted, cost per unit discounted.
     pub effects: Vec<(String, Option<f64>, Option<f64>)>,
     /// The same under the companion schedule.
@@ -131,6 +135,7 @@ pub(crate) fn option_reports(
             basis_words: outcome.basis.words(),
             base: outcome.base_words.clone(),
             timing: outcome.timing_sentence.clone(),
+            prices: outcome.prices.clone(),
             absolute: outcome.absolute,
             increment: outcome.increment,
             above: names(i, &|kind| kind != StreamKind::Cost),
@@ -143,6 +148,15 @@ pub(crate) fn option_reports(
             mean_time: outcome.mean_time,
             era_shares: outcome.era_shares.clone(),
             npv_per_budget: outcome.npv_per_budget,
+            stream_bases: choice
+                .streams
+                .iter()
+                .zip(&outcome.streams)
+                .filter_map(|(stream, valued)| {
+                    let basis = &valued.own.as_ref()?.basis;
+                    Some((stream.name.clone(), basis.canonical(), basis.words()))
+                })
+                .collect(),
             effects: choice
                 .effects
                 .iter()

@@ -115,8 +115,6 @@ pub enum Takes {
 pub enum Status {
     /// Read or filled.
     Supported,
-    /// Understood without a stream; with one it is refused, with this reason.
-    SupportedAlone(&'static str),
     /// Refused by name, with what to do instead.
     Later(&'static str),
 }
@@ -146,22 +144,18 @@ const fn but(info: RoleInfo, status: Status) -> RoleInfo {
     RoleInfo { status, ..info }
 }
 
-const PRICES_LATER: Status = Status::Later(
-    "prices are not converted yet: enter flows and rate in one price basis, both real or both nominal",
-);
 const WELFARE_LATER: Status =
     Status::Later("welfare measures are not computed from workbooks yet: leave this name out");
-const SECOND_BASIS: Status = Status::SupportedAlone(
-    "a second basis for one stream is not computed yet: value that stream in a workbook of its own, \
-     or name the basis without a stream",
-);
 
 /// The one table of roles.
 pub const ROLES: &[RoleInfo] = &[
     row(Role::Base, "base", Way::In, Takes::NoStream, "base year (number), financial year or date"),
-    but(
-        row(Role::Basis, "basis", Way::In, Takes::MayStream, "rate line, schedule id or a number"),
-        SECOND_BASIS,
+    row(
+        Role::Basis,
+        "basis",
+        Way::In,
+        Takes::MayStream,
+        "rate line, schedule id or a number; with a stream, a basis for that stream alone",
     ),
     row(Role::Timing, "timing", Way::In, Takes::NoStream, "positions: `flows middle, base end`"),
     row(
@@ -223,26 +217,38 @@ pub const ROLES: &[RoleInfo] = &[
         "value left at the last year, in the stream's unit",
     ),
     row(Role::Tail, "tail", Way::In, Takes::Stream, "what follows the last year: `growing 1%, for ever`"),
-    but(
-        row(Role::PriceBasis, "price_basis", Way::In, Takes::NoStream, "`real 2022` or `nominal`"),
-        PRICES_LATER,
+    row(
+        Role::PriceBasis,
+        "price_basis",
+        Way::In,
+        Takes::NoStream,
+        "prices of the flows: `real 2022`, `real` or `nominal`",
     ),
-    but(
-        row(Role::Prices, "prices", Way::In, Takes::NoStream, "a price index or an inflation rate"),
-        PRICES_LATER,
+    row(
+        Role::Prices,
+        "prices",
+        Way::In,
+        Takes::NoStream,
+        "an index along the years or an inflation rate, by which flows in money of the day are made real",
     ),
-    but(
-        row(Role::Growth, "growth", Way::In, Takes::Stream, "relative price growth of a stream"),
-        PRICES_LATER,
+    row(
+        Role::Growth,
+        "growth",
+        Way::In,
+        Takes::Stream,
+        "growth of a stream's price against others, a rate a year from the price base",
     ),
     but(
         row(Role::Consumption, "consumption", Way::In, Takes::NoStream, "a path of consumption per head"),
         WELFARE_LATER,
     ),
     but(row(Role::Income, "income", Way::In, Takes::Stream, "income of a group"), WELFARE_LATER),
-    but(
-        row(Role::Factor, "factor", Way::Out, Takes::MayStream, "a discount factor for each year"),
-        SECOND_BASIS,
+    row(
+        Role::Factor,
+        "factor",
+        Way::Out,
+        Takes::MayStream,
+        "a discount factor for each year; with a stream, on that stream's basis",
     ),
     row(Role::Pv, "pv", Way::Out, Takes::MayStream, "present value by year, or the total in one cell"),
     row(Role::Rates, "rates", Way::Out, Takes::NoStream, "the workbook's own yearly rates"),

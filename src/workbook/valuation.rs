@@ -5,10 +5,12 @@ use hence_core::{
     sum,
 };
 
-use crate::appraisal::{Appraisal, COMMAND_LINE, Choice, Label, Stream, StreamKind};
+use crate::adjust;
+use crate::appraisal::{Appraisal, Axis, COMMAND_LINE, Choice, Label, Stream, StreamKind};
 use crate::clock::{Clock, base_words, base_year, label_words, sentence};
+use crate::dated;
 use crate::measuring::{Further, Moments, measure_gross, measure_net, measure_units};
-use crate::outcome::{ChoiceOutcome, Flows, StreamOutcome, Totals};
+use crate::outcome::{ChoiceOutcome, OwnBasis, StreamOutcome, Totals};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::references::{Cell, Range, SheetRange};
 use crate::roles::key;
@@ -73,7 +75,7 @@ fn overflow(choice: &Choice, outcome: &ChoiceOutcome) -> Option<Problem> {
 }
 
 /// The place of what was given: its cell, else where it came from.
-fn place_of(at: &Option<SheetRange>, from: &str) -> Place {
+pub(crate) fn place_of(at: &Option<SheetRange>, from: &str) -> Place {
     match at {
         Some(at) => Place::cells(&at.sheet, at.range).called(from),
         None => Place::name(from),
@@ -161,6 +163,7 @@ fn value_choice(
     for warning in basis.warnings() {
         push_once(problems, Problem::warning("basis-note", basis_place(), warning));
     }
+    adjust::check_basis(choice, &basis, basis_place(), problems)?;
     let timing = timing_in_force(choice, &basis, problems);
     let clock = Clock::new(axis, &choice.base.value, timing)?;
     warn_timing(choice, timing, &basis, &clock, problems);
@@ -169,18 +172,13 @@ fn value_choice(
     for warning in curve.warnings() {
         push_once(problems, Problem::warning("curve-note", basis_place(), warning));
     }
-    let mut factors = Vec::with_capacity(clock.offsets.len());
-    for i in 0..clock.offsets.len() {
-        let factor = clock.factor(&curve, i).map_err(|error| {
-            let at = cell_of(&axis.at, i);
-            from_core(&error, Place::cells(&at.sheet, at.range).called(&label_words(&axis.labels[i])))
-        })?;
-        factors.push(factor);
-    }
+    let factors = factors(axis, &clock, &curve)?;
     let (mut streams, mut further) = (Vec::new(), Vec::new());
     for stream in &choice.streams {
-        let tail_base = tail_base(&axis.labels, &clock, choice);
-        let (outcome, later) = value_stream(stream, &clock, &curve, &factors, tail_base)?;
+        let own = own_basis(stream, (choice, axis), &clock, at, catalogue, problems)?;
+        let (curve, factors) = own.as_ref().map_or((&curve, &factors), |own| (&own.curve, &own.factors));
+        let (mut outcome, later) = value_stream(stream, (choice, axis), &clock, curve, factors)?;
+        outcome.own = own;
         streams.push(outcome);
         further.push(later);
     }
@@ -195,6 +193,7 @@ fn value_choice(
     let mut outcome = ChoiceOutcome {
         base_words: base_words(&choice.base.value),
         timing_sentence: sentence(axis, &clock, &factors),
+        prices: adjust::words(choice),
         timing: clock.timing,
         offsets: clock.offsets.clone(),
         forward: clock.offsets.iter().map(|t| yearly_rate(&curve, *t)).collect(),
@@ -211,18 +210,63 @@ fn value_choice(
         npv_per_budget: None,
         effects: Vec::new(),
         net,
-        dated: Flows::default(),
+        dated: dated::flows(choice, axis, &clock, &streams)?,
         streams,
         factors,
         basis,
         curve,
     };
     let moments = Moments::of(choice, &outcome, &further, &clock);
-    outcome.dated = moments.flows();
     measure_net(&mut outcome, &moments);
     measure_gross(&mut outcome, &further, &clock);
     measure_units(&mut outcome, choice, None);
     Ok((outcome, moments))
+}
+
+/// The factor of every year.
+fn factors(axis: &Axis, clock: &Clock, curve: &Curve) -> Result<Vec<f64>> {
+    let mut factors = Vec::with_capacity(clock.offsets.len());
+    for i in 0..clock.offsets.len() {
+        let factor = clock.factor(curve, i).map_err(|error| {
+            let at = cell_of(&axis.at, i);
+            from_core(&error, Place::cells(&at.sheet, at.range).called(&label_words(&axis.labels[i])))
+        })?;
+        factors.push(factor);
+    }
+    Ok(factors)
+}
+
+/// The basis that a stream has of its own. Its timing is the option's: a flow stands where it stands.
+fn own_basis(
+    stream: &Stream,
+    (choice, axis): (&Choice, &Axis),
+    clock: &Clock,
+    at: Where,
+    catalogue: &Catalogue,
+    problems: &mut Vec<Problem>,
+) -> Result<Option<OwnBasis>> {
+    let Some(given) = &stream.basis else { return Ok(None) };
+    let place = || place_of(&given.at, &given.from);
+    let basis = Basis::parse(&given.value, catalogue).map_err(|error| from_core(&error, place()))?;
+    let curve = basis.curve(&at).map_err(|error| from_core(&error, place()))?;
+    adjust::check_basis(choice, &basis, place(), problems)?;
+    for warning in basis.warnings() {
+        push_once(problems, Problem::warning("basis-note", place(), warning));
+    }
+    for warning in curve.warnings() {
+        push_once(problems, Problem::warning("curve-note", place(), warning));
+    }
+    if let Some(timing) = basis.timing().filter(|timing| clock.timed && *timing != clock.timing) {
+        let message = format!("says {timing}, while the flows stand at {}: that counts", clock.timing);
+        push_once(
+            problems,
+            Problem::warning("timing-differs", place(), message)
+                .hint("leave the timing out of the basis of a stream"),
+        );
+    }
+    let factors = factors(axis, clock, &curve)?;
+    let forward = clock.offsets.iter().map(|t| yearly_rate(&curve, *t)).collect();
+    Ok(Some(OwnBasis { basis, curve, factors, forward }))
 }
 
 /// The forward rate of the year that holds an offset. At the base and before it the first rate extends backwards,
@@ -235,7 +279,7 @@ fn yearly_rate(curve: &Curve, t: f64) -> Option<f64> {
 }
 
 /// The base year from which the end of a tail counts: where years are dates, such that the end is a year of theirs.
-fn tail_base(labels: &[Label], clock: &Clock, choice: &Choice) -> Option<i32> {
+pub(crate) fn tail_base(labels: &[Label], clock: &Clock, choice: &Choice) -> Option<i32> {
     match (labels.last(), clock.years.last()) {
         (Some(Label::Date(date)), Some(years)) => Some(chrono::Datelike::year(date) - years.ceil() as i32),
         _ => base_year(&choice.base.value),
@@ -250,37 +294,43 @@ fn push_once(problems: &mut Vec<Problem>, problem: Problem) {
 
 fn value_stream(
     stream: &Stream,
+    (choice, axis): (&Choice, &Axis),
     clock: &Clock,
     curve: &Curve,
     factors: &[f64],
-    base_year: Option<i32>,
 ) -> Result<(StreamOutcome, Further)> {
+    let base_year = tail_base(&axis.labels, clock, choice);
+    let (multipliers, tail) = (adjust::multipliers(stream, choice, axis)?, adjust::tail(stream, choice)?);
+    let multiplier = |i: usize| multipliers.as_ref().map_or(1.0, |all| all[i]);
     let scale = stream.sign * stream.unit * (1.0 + stream.uplift.value);
     // Adding zero turns -0 into 0, which no cell should show.
-    let mut flows: Vec<f64> = stream.raw.iter().map(|x| x * scale + 0.0).collect();
+    let mut flows: Vec<f64> =
+        stream.raw.iter().enumerate().map(|(i, x)| x * scale * multiplier(i) + 0.0).collect();
     let last = flows.len() - 1;
     let last_flow = flows[last];
     if let Some(residual) = &stream.residual {
-        let amount = residual.value * stream.unit;
+        // Left over in the prices of the last year, as its flow is.
+        let amount = residual.value * stream.unit * multiplier(last);
         flows[last] += if stream.kind == StreamKind::Cost { -amount } else { amount };
     }
     let place = || Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
     if !flows.iter().all(|x| x.is_finite()) {
         return Err(too_large(place(), "a flow").into());
     }
-    let (pv_tail, further) = match &stream.tail {
-        None => (0.0, Further::default()),
-        Some(tail) => {
-            let failed = |error: hence_core::Error| from_core(&error, place_of(&tail.at, &tail.from));
+    let (pv_tail, further) = match (&stream.tail, &tail) {
+        (None, _) | (_, None) => (0.0, Further::default()),
+        (Some(given), Some(tail)) => {
+            let failed = |error: hence_core::Error| from_core(&error, place_of(&given.at, &given.from));
             let years = clock.years[last];
-            let value = tail.value.timed_present_value(curve, years, clock.timing, last_flow, base_year);
-            let further = Further::of(stream, last_flow, clock, curve, base_year);
+            let value = tail.timed_present_value(curve, years, clock.timing, last_flow, base_year);
+            let further = Further::of(tail, last_flow, clock, curve, base_year);
             (value.map_err(failed)?, further.map_err(failed)?)
         }
     };
     let pv_by_year: Vec<f64> = flows.iter().zip(factors).map(|(x, d)| x * d).collect();
     let pv = sum(&[dot(&flows, factors), pv_tail]);
-    let outcome = StreamOutcome { undiscounted: sum(&flows), flows, pv_by_year, pv_tail, pv };
+    let outcome =
+        StreamOutcome { undiscounted: sum(&flows), flows, pv_by_year, pv_tail, pv, multipliers, own: None };
     if outcome.pv.is_finite() && outcome.undiscounted.is_finite() {
         Ok((outcome, further))
     } else {
@@ -288,18 +338,27 @@ fn value_stream(
     }
 }
 
-/// Net present value of an option as it stands on another curve.
-pub(crate) fn npv_on(appraisal: &Appraisal, choice: &Choice, curve: &Curve, timing: Timing) -> Result<f64> {
+/// Net present value of an option as it stands on another curve; streams with a basis of their own keep it.
+pub(crate) fn npv_on(
+    appraisal: &Appraisal,
+    choice: &Choice,
+    outcome: &ChoiceOutcome,
+    curve: &Curve,
+) -> Result<f64> {
+    let timing = outcome.timing;
     let axis = &appraisal.axes[choice.axis];
     let clock = Clock::new(axis, &choice.base.value, timing)?;
     let factors: hence_core::Result<Vec<f64>> =
         (0..clock.offsets.len()).map(|i| clock.factor(curve, i)).collect();
     let factors = factors.map_err(|error| from_core(&error, Place::name(&choice.name)))?;
-    let tail_base = tail_base(&axis.labels, &clock, choice);
     let mut terms = Vec::new();
-    for stream in &choice.streams {
+    for (stream, valued) in choice.streams.iter().zip(&outcome.streams) {
         let (above, below) = side(stream.kind);
-        terms.push((above - below) * value_stream(stream, &clock, curve, &factors, tail_base)?.0.pv);
+        if valued.own.is_some() {
+            terms.push((above - below) * valued.pv);
+            continue;
+        }
+        terms.push((above - below) * value_stream(stream, (choice, axis), &clock, curve, &factors)?.0.pv);
     }
     Ok(sum(&terms))
 }
@@ -392,6 +451,22 @@ fn warn_baseline(
                 format!("its basis, base or timing is not that of the baseline `{}`", base_choice.name),
             )
             .hint("value both on one basis from one base year, or the increment has no meaning"),
+        );
+    }
+    for (stream, valued) in choice.streams.iter().zip(&outcome.streams) {
+        let twin = base_choice.streams.iter().position(|other| key(&other.name) == key(&stream.name));
+        let Some(twin) = twin.filter(|s| base.streams[*s].own != valued.own) else { continue };
+        let message = format!(
+            "its stream `{}` is discounted on {}, in the baseline `{}` on {}",
+            stream.name,
+            valued.own.as_ref().map_or(&outcome.basis, |own| &own.basis).canonical(),
+            base_choice.name,
+            base.basis_of(twin).canonical()
+        );
+        push_once(
+            problems,
+            Problem::warning("baseline-basis", Place::name(&choice.name), message)
+                .hint("discount a stream on one basis in every option"),
         );
     }
     // A damage that one side does not state would count as wholly avoided, or wholly new.

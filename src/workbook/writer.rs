@@ -55,6 +55,8 @@ pub enum Style {
     Rate,
     /// A switching value, as a percentage with four decimals.
     Percent,
+    /// A switching value that is no percentage, with four decimals.
+    Value,
     /// A share, as a percentage without decimals.
     Share,
     /// A discount factor.
@@ -128,6 +130,7 @@ impl Style {
             Style::Offset => "0.0##",
             Style::Rate => "0.00%",
             Style::Percent => "0.0000%",
+            Style::Value => "0.0000",
             Style::Share => "0%",
             Style::Factor => "0.000000",
             Style::Money | Style::Total if decimals => "#,##0.00;\\-#,##0.00;0.00",

@@ -33,6 +33,14 @@ fn every_abuse_has_its_answer() {
     }
 }
 
+/// With room for a quarter of the results.
+#[test]
+fn memory_that_runs_out_is_a_status() {
+    let folder = tempfile::tempdir().expect("a temporary folder");
+    let program = compile("memory.c", folder.path(), &["-O1"]);
+    assert_eq!(run(&[program.to_str().expect("a path in UTF-8")], &[]), "done\n");
+}
+
 /// The C side is instrumented.
 #[test]
 fn the_sanitizers_find_nothing_in_the_calls() {

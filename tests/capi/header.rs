@@ -53,3 +53,34 @@ fn the_header_compiles_as_c_and_cpp() {
         assert!(output.status.success(), "{standard}: {}", String::from_utf8_lossy(&output.stderr));
     }
 }
+
+/// Each function says what its parameters are, what comes back and which threads may call it, or which function it is like.
+#[test]
+fn every_parameter_is_documented() {
+    let header = std::fs::read_to_string(root().join("include/hence.h")).expect("include/hence.h");
+    let mut functions = 0;
+    for block in header.split("\n\n").filter(|block| block.trim_end().ends_with(");")) {
+        let is_comment = |line: &&str| line.starts_with("//");
+        let comment = block.lines().filter(is_comment).collect::<Vec<_>>().join(" ").replace(" //", "");
+        let code = block.lines().filter(|line| !is_comment(line)).collect::<Vec<_>>().join(" ");
+        let (declared, parameters) = code.split_once('(').expect("a function");
+        let name = declared.rsplit([' ', '*']).next().expect("a name");
+        functions += 1;
+        let like = comment.contains(" as hence_") || comment.contains(" as for hence_");
+        assert!(
+            comment.contains("Threads: ") || (like && comment.contains("threads as ")),
+            "{name}: threads"
+        );
+        let parameters = parameters.trim_end_matches(");").split(',');
+        let names: Vec<&str> = parameters.filter_map(|one| one.rsplit([' ', '*']).next()).collect();
+        // The frees, and functions of none or one number, say all in a sentence.
+        if names.len() < 2 {
+            continue;
+        }
+        assert!(comment.contains("Returns ") || (like && comment.contains("statuses ")), "{name}: statuses");
+        for parameter in names {
+            assert!(like || comment.contains(&format!("`{parameter}`")), "{name}: {parameter}");
+        }
+    }
+    assert!(functions >= 27, "{functions} functions");
+}

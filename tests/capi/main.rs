@@ -1,6 +1,7 @@
 //! The C interface as C sees it: header, symbols, layout, abuse, threads, and the reference rows.
 
 mod abuse;
+mod examples;
 mod header;
 mod install;
 mod layout;

@@ -61,6 +61,28 @@ fn the_sample_saved_by_another_program_gives_the_same() {
     }
 }
 
+/// Benefits of 600 in money of the day, inflation of 25%: 480 and 384 in prices of 2026.
+#[test]
+fn the_prices_of_the_flows_are_reported() {
+    let book = plan(&[("B60", "nominal"), ("B61", "0.25")]);
+    let roles = ["--role", "price_basis=Appraisal!B60", "--role", "prices=Appraisal!B61"];
+    let output = run(&[&["fill", book.arg(), "--json"], &roles[..]].concat());
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    let option = &json(&output)["books"][0]["options"][0];
+    let words = "real: flows are entered in money of the day and made real by inflation of 25% a year (from --role \
+                 prices), in prices of the base, 2026";
+    assert_eq!(option["prices"], words);
+    assert!(
+        close(option["pv_benefits"].as_f64().unwrap(), 480.0 / 1.035 + 384.0 / 1.035_f64.powi(2)),
+        "{option}"
+    );
+    let output = run(&[&["fill", book.arg(), "--force"], &roles[..]].concat());
+    assert!(stdout(&output).contains(&format!("Prices  {words}\n")), "{}", stdout(&output));
+    // Where nothing is said of prices, nothing is reported.
+    let output = run(&["fill", book.arg(), "--force"]);
+    assert!(!stdout(&output).contains("Prices"), "{}", stdout(&output));
+}
+
 #[test]
 fn json_has_the_documented_shape_and_the_right_numbers() {
     let book = plan(&[]);

@@ -5,6 +5,7 @@ mod brief;
 mod check;
 mod compare;
 mod curve;
+mod draws;
 mod errors;
 mod fill;
 mod help;
@@ -15,6 +16,7 @@ mod readme;
 mod schedules;
 mod start;
 mod targets;
+mod windows;
 
 use std::io::Write;
 use std::path::{Path, PathBuf};

@@ -4,6 +4,7 @@ mod accuracy;
 mod basis;
 mod calendar;
 mod curves;
+mod draws;
 mod evidence;
 mod exact;
 mod growth;
@@ -18,6 +19,7 @@ mod sums;
 mod switching;
 mod tails;
 mod timing;
+mod welfare;
 
 /// Property tests draw the same cases every time, and leave no files behind.
 fn repeatable() -> proptest::test_runner::Config {

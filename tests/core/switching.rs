@@ -2,7 +2,7 @@
 //! the changed line and must make the net present value zero.
 
 use hence_core::{
-    Curve, Endless, ErrorKind, NetFlows, Parameter, RateLine, Spec, Switching, Tail, Where, dot,
+    Curve, ErrorKind, OptionFlows, Parameter, Perpetual, RateLine, Spec, Switching, Tail, Where, dot,
     switching_multiplier, switching_values,
 };
 use proptest::prelude::*;
@@ -26,7 +26,7 @@ fn worth(curve: &Curve, offsets: &[f64], flows: &[f64]) -> f64 {
 }
 
 fn search(line: &str, flows: &[f64], parameter: Parameter) -> Switching {
-    let net = NetFlows { offsets: &years(flows.len()), flows, endless: &[] };
+    let net = OptionFlows { offsets: &years(flows.len()), flows, perpetual: &[] };
     switching_values(&net, &spec(line), &NO_BASE, parameter, parameter.interval()).unwrap()
 }
 
@@ -121,7 +121,7 @@ fn a_path_of_growth_with_close_values() {
             let ([a, b], [c, d]) = (factors(at), factors(at + apart));
             let determinant = a * d - b * c;
             let flows = [1.0, (b - d) / determinant, (c - a) / determinant];
-            let net = NetFlows { offsets: &offsets, flows: &flows, endless: &[] };
+            let net = OptionFlows { offsets: &offsets, flows: &flows, perpetual: &[] };
             let found =
                 switching_values(&net, &spec(line), &NO_BASE, parameter, parameter.interval()).unwrap();
             // The flows themselves are rounded, and more so the closer the values are.
@@ -196,23 +196,23 @@ fn precaution_bends_the_rate_so_that_an_elasticity_occurs_twice() {
 
 #[test]
 fn flows_for_ever_are_part_of_it() {
-    let endless = |flow, growth, every| Endless { start: 0.0, flow, growth, every };
-    let find = |flows: &[f64], endless: &[Endless], line: &str, parameter: Parameter| {
-        let net = NetFlows { offsets: &years(flows.len()), flows, endless };
+    let endless = |flow, growth, every| Perpetual { start: 0.0, flow, growth, every };
+    let find = |flows: &[f64], perpetual: &[Perpetual], line: &str, parameter: Parameter| {
+        let net = OptionFlows { offsets: &years(flows.len()), flows, perpetual: endless };
         switching_values(&net, &spec(line), &NO_BASE, parameter, parameter.interval()).unwrap()
     };
     // 5 growing by 1% for ever is worth 5.05/(r - 1%), which is 100 at 6.05%.
-    let found = find(&[-100.0], &[endless(5.0, 0.01, 1.0)], "4%", Rate);
+    let found = find(&[-100.0], &[endless(5.0, 0.01, 1)], "4%", Rate);
     assert_values(&found, &[0.0605], 1e-14);
     assert!((found.interval.0 - 0.01).abs() < 1e-5 && found.interval.1 == 1.0);
     let line = "preference 1%, elasticity 1, growth 2%";
-    assert_values(&find(&[-100.0], &[endless(5.0, 0.01, 1.0)], line, Elasticity), &[2.525], 1e-12);
+    assert_values(&find(&[-100.0], &[endless(5.0, 0.01, 1)], line, Elasticity), &[2.525], 1e-12);
     // 30 every fifth year for ever is 30/((1+r)^5 - 1) = 100 where (1+r)^5 = 1.3.
-    assert_values(&find(&[-100.0], &[endless(30.0, 0.0, 5.0)], "4%", Rate), &[1.3f64.powf(0.2) - 1.0], 1e-14);
+    assert_values(&find(&[-100.0], &[endless(30.0, 0.0, 5)], "4%", Rate), &[1.3f64.powf(0.2) - 1.0], 1e-14);
     // Two kinds of the same growth, one year and two apart: a/r + b/((1+r)^2 - 1) = 100 at 5%.
     let (a, q) = (3.0, 1.05f64 * 1.05 - 1.0);
     let b = (100.0 - a / 0.05) * q;
-    let both = [endless(a, 0.0, 1.0), endless(b, 0.0, 2.0)];
+    let both = [endless(a, 0.0, 1), endless(b, 0.0, 2)];
     assert_values(&find(&[-100.0], &both, "4%", Rate), &[0.05], 1e-13);
 }
 
@@ -226,10 +226,10 @@ fn flows_for_ever_under_bands_agree_with_their_tail() {
         let Ok(parsed) = RateLine::parse(line) else { continue };
         for parameter in [Preference, Elasticity, Growth] {
             let tail = Tail::parse("growing 0.5%, every 3 years, for ever").unwrap();
-            let net = NetFlows {
+            let net = OptionFlows {
                 offsets: &[0.0, 2.0],
                 flows: &[-200.0, 12.0],
-                endless: &[Endless { start: 2.0, flow: 12.0, growth: 0.005, every: 3.0 }],
+                perpetual: &[Perpetual { start: 2.0, flow: 12.0, growth: 0.005, every: 3 }],
             };
             let found =
                 switching_values(&net, parsed.spec(), &NO_BASE, parameter, parameter.interval()).unwrap();
@@ -259,7 +259,7 @@ fn a_schedule_of_states_has_a_preference() {
     };
     let flows = [-100.0, 20.0, 20.0, 20.0, 20.0, 20.0, 20.0];
     let offsets = years(flows.len());
-    let net = NetFlows { offsets: &offsets, flows: &flows, endless: &[] };
+    let net = OptionFlows { offsets: &offsets, flows: &flows, perpetual: &[] };
     let found = switching_values(&net, &regimes, &NO_BASE, Preference, Preference.interval()).unwrap();
     assert_eq!(found.values.len(), 1, "{found:?}");
     let curve = Preference.at(&regimes, found.values[0]).unwrap().curve(&NO_BASE).unwrap();
@@ -271,27 +271,27 @@ fn a_schedule_of_states_has_a_preference() {
 #[test]
 fn what_cannot_be_searched_is_refused() {
     let line = spec("preference 1%, elasticity 1, growth 2% to 30, 1% after");
-    let refused = |net: NetFlows, spec: &Spec, parameter, interval| {
+    let refused = |net: OptionFlows, spec: &Spec, parameter, interval| {
         let error = switching_values(&net, spec, &NO_BASE, parameter, interval).unwrap_err();
         (error.kind(), error.argument(), error.index())
     };
-    let net = NetFlows { offsets: &[0.0, 1.0], flows: &[-1.0, 2.0], endless: &[] };
+    let net = OptionFlows { offsets: &[0.0, 1.0], flows: &[-1.0, 2.0], perpetual: &[] };
     let whole = (-0.5, 1.0);
     assert_eq!(refused(net, &spec("4%"), Growth, whole), (ErrorKind::Unsupported, "parameter", None));
     assert_eq!(refused(net, &line, Growth, (1.0, 1.0)), (ErrorKind::RateRange, "interval", None));
     assert_eq!(refused(net, &line, Growth, (f64::NAN, 1.0)), (ErrorKind::NotFinite, "interval", Some(0)));
-    let short = NetFlows { flows: &[1.0], ..net };
+    let short = OptionFlows { flows: &[1.0], ..net };
     assert_eq!(refused(short, &line, Rate, whole), (ErrorKind::Shape, "flows", None));
-    let zero = NetFlows { flows: &[0.0, 0.0], ..net };
+    let zero = OptionFlows { flows: &[0.0, 0.0], ..net };
     assert_eq!(refused(zero, &line, Growth, whole), (ErrorKind::NoMeaning, "flows", None));
     let ends = spec("preference 1%, elasticity 1, growth 2% to 30");
-    let late = NetFlows { offsets: &[0.0, 31.0], ..net };
+    let late = OptionFlows { offsets: &[0.0, 31.0], ..net };
     assert_eq!(refused(late, &ends, Growth, whole), (ErrorKind::OutsideDomain, "offset", Some(1)));
-    let tail = [Endless { start: 1.0, flow: 1.0, growth: 0.0, every: 1.0 }];
-    let for_ever = NetFlows { endless: &tail, ..net };
-    assert_eq!(refused(for_ever, &ends, Growth, whole), (ErrorKind::Unsupported, "endless", None));
-    let growing = [Endless { growth: 2.0, ..tail[0] }];
-    let too_fast = NetFlows { endless: &growing, ..net };
+    let tail = [Perpetual { start: 1.0, flow: 1.0, growth: 0.0, every: 1 }];
+    let for_ever = OptionFlows { perpetual: &tail, ..net };
+    assert_eq!(refused(for_ever, &ends, Growth, whole), (ErrorKind::Unsupported, "perpetual", None));
+    let growing = [Perpetual { growth: 2.0, ..tail[0] }];
+    let too_fast = OptionFlows { perpetual: &growing, ..net };
     assert_eq!(refused(too_fast, &line, Rate, whole), (ErrorKind::Diverges, "interval", None));
 }
 

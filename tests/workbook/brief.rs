@@ -531,3 +531,21 @@ fn options_that_begin_alike_are_numbered() {
     }
     assert!(!html(&briefed(&plan("10%", &[ALPHA, BETA]))).contains("1. Alpha"));
 }
+
+#[test]
+fn what_is_not_taken_as_entered_is_told() {
+    let book = plan("10%", &[ALPHA, BETA])
+        .sheet("More", "A1: 0.5\nA2: '5%\nA3: 'real 2020")
+        .names("hence_uplift_works A1, hence_basis_sales__Alpha A2, hence_price_basis A3");
+    let brief = briefed(&book);
+    let remarks = texts(&brief, "What was valued, and what was not");
+    let told = remarks.iter().find(|text| text.starts_with("Adjusted")).expect("the adjustments");
+    assert!(told.contains("“works” raised by 50% (in “Alpha” and “Beta”)"), "{told}");
+    assert!(told.contains("“sales” discounted on 5%, a basis of its own (in “Alpha”)"), "{told}");
+    let basis = texts(&brief, "The basis");
+    has(&basis, "Another basis: “sales” on “5%”: 5% a year (as stated, no published source)");
+    assert!(basis.iter().any(|text| text.starts_with("Prices: ") && text.contains("2020")), "{basis:#?}");
+    // 242 / 1.05^2 - 150 = 69.50; 110 / 1.1 - 75 = 25.
+    assert!(brief.answer[0].contains("69.50") && brief.answer[0].contains("25.00"), "{:?}", brief.answer);
+    assert!(brief.answer.last().unwrap().contains("not all valued on one basis"), "{:?}", brief.answer);
+}

@@ -45,7 +45,7 @@ fn filled(name: &str, bytes: &[u8], request: &FillRequest, catalogue: &Catalogue
 
 /// Whether a column of differences stands there: tiny numbers, compared with what is allowed beside them.
 fn is_difference(sheet: &str, cell: Cell) -> bool {
-    (sheet == "Audit checks" && cell.col == 6) || (sheet == "Audit coverage" && cell.col == 5)
+    matches!((sheet, cell.col), ("Audit checks", 6) | ("Audit coverage", 5) | ("Audit sensitivity", 4))
 }
 
 /// How far two stored values lie apart, in words; nothing where they agree within 1e-9 of their size.
@@ -257,6 +257,24 @@ fn turns() -> Vec<Turn> {
             _ => typed("B1", case.written(2 + case.past)),
         });
     }
+    let priced = |by: &str| CASES.iter().position(|case| case.prices.1.contains(by)).expect("a priced case");
+    let (inflation, index) = (priced("inflation, growth"), priced("index"));
+    let (level, multiplied) = (CASES[index].level(5), case_name(index));
+    let priced = case_name(inflation);
+    // Prices: what they are, inflation and growth, a level of the index, a multiplier on hence's own sheet.
+    turns.extend([
+        turn(&priced, "Appraisal", "B10", CellWrite::Text("real 2031".into())),
+        turn(&priced, "Appraisal", "B11", CellWrite::Number(0.03)),
+        turn(&priced, "Appraisal", "B12", CellWrite::Number(0.02)),
+        turn(&multiplied, "Appraisal", &level, CellWrite::Number(70.0)),
+        turn(&multiplied, "Discounting", "G20", CellWrite::Number(0.5)),
+    ]);
+    let owned = CASES.iter().position(|case| case.own.1).expect("a case with factors of a stream");
+    turns.extend([
+        turn(&case_name(owned), "Appraisal", "E10", CellWrite::Text("1%".into())),
+        turn(&case_name(owned), "Appraisal", &CASES[owned].own_factor(7), CellWrite::Number(0.5)),
+        turn(&case_name(owned), "Discounting", "I12", CellWrite::Number(0.5)),
+    ]);
     let settings = CASES.iter().position(|case| case.settings).expect("a case with settings");
     for (cell, write, check) in [
         ("B4", CellWrite::Text("costs positive".into()), Check::After),

@@ -14,8 +14,9 @@ use hence_workbook::sheets::VERDICT_AGREES;
 
 mod book;
 mod curves;
+mod drawn;
 mod model;
-mod published;
+pub mod published;
 mod recalculated;
 mod rules;
 

@@ -41,9 +41,6 @@ fn role_row(info: &RoleInfo) -> String {
     let why = |reason: &'static str| reason.split(':').next().unwrap_or(reason);
     let what = match info.status {
         Status::Supported => info.what.to_owned(),
-        Status::SupportedAlone(reason) => {
-            format!("{} (*with a stream: not in this version, {}*)", info.what, why(reason))
-        }
         Status::Later(reason) => format!("{} (*not in this version: {}*)", info.what, why(reason)),
     };
     format!("| {names} | {way} | {} |\n", cell(&what))

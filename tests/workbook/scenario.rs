@@ -3,8 +3,9 @@
 //! Figures are made up for the test. Outcomes are worked out here from the curve's factors alone.
 
 use chrono::NaiveDate;
-use hence_core::{Basis, Catalogue, Payback, Position, Tail, Timing, Where, internal_rates};
+use hence_core::{Basis, Catalogue, Payback, Perpetual, Position, Tail, Timing, Where, internal_rates};
 use hence_workbook::appraisal::*;
+use hence_workbook::dated::Flows;
 use hence_workbook::outcome::*;
 use hence_workbook::references::{Cell, Range, SheetRange};
 
@@ -85,6 +86,8 @@ fn stream(
         uplift: given(0.0, None),
         residual: None,
         tail: None,
+        growth: None,
+        basis: None,
     }
 }
 
@@ -121,6 +124,7 @@ fn option(case: &Case, sheet: &str, axis: usize, strong: f64, full: bool) -> Cho
         },
         basis: given(case.basis.into(), None),
         timing: None,
+        prices: Prices::default(),
         axis,
         streams: vec![works, water, flood],
         effects: Vec::new(),
@@ -279,7 +283,15 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
             let for_ever = flows[flows.len() - 1] / 0.035 * factors[factors.len() - 1];
             let pv_tail = if s.tail.is_some() { for_ever } else { 0.0 };
             let pv = pv_by_year.iter().sum::<f64>() + pv_tail;
-            StreamOutcome { undiscounted: flows.iter().sum(), flows, pv_by_year, pv_tail, pv }
+            StreamOutcome {
+                undiscounted: flows.iter().sum(),
+                flows,
+                pv_by_year,
+                pv_tail,
+                pv,
+                multipliers: None,
+                own: None,
+            }
         })
         .collect();
     let net: Vec<f64> =
@@ -288,10 +300,25 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
     let pv_benefits = streams[1].pv - streams[2].pv;
     let service_years = length.ceil() as u32;
     let annuity: f64 = (1..=service_years).map(|n| curve.factor(f64::from(n)).unwrap()).sum();
+    let ends: &[f64] = if averaged { &[0.0, 1.0] } else { &[0.0] };
+    let halves = offsets.iter().zip(&net);
+    let halves = halves.flat_map(|(t, x)| ends.iter().map(move |end| (t - end, x / ends.len() as f64)));
+    let (at, flows) = halves.unzip();
+    let signs = [-1.0, 1.0, -1.0];
+    let tailed = choice.streams.iter().zip(&streams).zip(signs).filter(|((s, _), _)| s.tail.is_some());
+    let perpetual = tailed.map(|((_, o), sign)| Perpetual {
+        start: offsets[offsets.len() - 1],
+        flow: sign * o.flows[o.flows.len() - 1],
+        growth: 0.0,
+        every: 1,
+    });
+    let perpetual = perpetual.collect();
     ChoiceOutcome {
+        dated: Flows { offsets: at, flows, perpetual },
         basis: basis.clone(),
         timing: case.timing,
         base_words: "2026".into(),
+        prices: None,
         timing_sentence: "a flow in 2026 has factor 1.0000, in 2027 0.9662".into(),
         forward: offsets.iter().map(|&t| (t > 0.0).then(|| curve.forward_rate(t.ceil()).unwrap())).collect(),
         service_years,

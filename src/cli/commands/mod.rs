@@ -4,6 +4,7 @@ pub mod brief;
 pub mod check;
 pub mod compare;
 pub mod curve;
+pub mod draws;
 pub mod fill;
 pub mod names;
 pub mod rate;

@@ -49,6 +49,13 @@ fn terms(facts: &Facts<'_>, option: usize) -> Vec<(String, String)> {
     if let Some(timing) = &choice.timing {
         terms[3].1.push_str(&format!(" ({})", from(timing)));
     }
+    terms.extend(own.prices.clone().map(|prices| ("Prices", prices)));
+    for (stream, basis, words) in &own.stream_bases {
+        terms.push((
+            "Another basis",
+            format!("{} on \u{201c}{basis}\u{201d}: {words}", words::quoted(stream)),
+        ));
+    }
     terms.into_iter().map(|(term, text)| (term.to_owned(), plain(&text))).collect()
 }
 

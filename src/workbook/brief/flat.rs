@@ -61,5 +61,5 @@ fn npv_at(appraisal: &Appraisal, outcomes: &[ChoiceOutcome], c: usize, rate: f64
     let choice = &appraisal.choices[c];
     let at = Where { base_year: base_year(&choice.base.value), length: None };
     let curve = Basis::from_rate(rate).ok()?.curve(&at).ok()?;
-    npv_on(appraisal, choice, &curve, outcomes[c].timing).ok().filter(|npv| npv.is_finite())
+    npv_on(appraisal, choice, &outcomes[c], &curve).ok().filter(|npv| npv.is_finite())
 }

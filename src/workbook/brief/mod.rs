@@ -191,6 +191,7 @@ impl Facts<'_> {
         let first = &self.options[0];
         self.options.iter().zip(self.outcomes).all(|(option, outcome)| {
             option.basis == first.basis
+                && option.stream_bases == first.stream_bases
                 && option.base == first.base
                 && outcome.timing == self.outcomes[0].timing
         })

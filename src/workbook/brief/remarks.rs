@@ -5,14 +5,18 @@ use super::{Block, Facts, Section};
 use crate::appraisal::StreamKind;
 use crate::fill::rows_not_valued;
 use crate::problem::Severity;
+use crate::sheets::adjusted;
 
-/// Rows and warnings that are listed, at most.
+/// Rows, warnings and options of a group that are listed, at most.
+const NAMED: usize = 3;
 const MOST_ROWS: usize = 8;
 const MOST_WARNINGS: usize = 6;
 
 /// The section.
 pub(super) fn section(facts: &Facts<'_>) -> Section {
-    let mut blocks = vec![Block::Paragraph(counted(facts)), Block::Paragraph(not_valued(facts))];
+    let mut blocks = vec![Block::Paragraph(counted(facts))];
+    blocks.extend(adjustments(facts).map(Block::Paragraph));
+    blocks.push(Block::Paragraph(not_valued(facts)));
     blocks.extend(warnings(facts));
     Section { title: "What was valued, and what was not".to_owned(), blocks, beside: None }
 }
@@ -36,6 +40,28 @@ fn counted(facts: &Facts<'_>) -> String {
         names(&|kind| kind != StreamKind::Cost),
         names(&|kind| kind == StreamKind::Cost)
     )
+}
+
+/// What was made of the flows as entered: what is the same for several options, once.
+fn adjustments(facts: &Facts<'_>) -> Option<String> {
+    let mut groups: Vec<(String, Vec<String>)> = Vec::new();
+    for (option, stream, words) in adjusted(facts.appraisal, facts.outcomes) {
+        let told = format!("{} {}", quoted(&stream), plain(&words));
+        match groups.iter_mut().find(|(known, _)| *known == told) {
+            Some((_, options)) => options.push(quoted(&option)),
+            None => groups.push((told, vec![quoted(&option)])),
+        }
+    }
+    let alone = facts.options.len() == 1;
+    let shown = groups.iter().take(MOST_ROWS).map(|(told, options)| match options.len() {
+        _ if alone => told.clone(),
+        n if n <= NAMED => format!("{told} (in {})", list(options, "and")),
+        n => format!("{told} (in {})", count(n, "option")),
+    });
+    let more = groups.len().saturating_sub(MOST_ROWS);
+    let more = if more > 0 { format!("; and {more} more") } else { String::new() };
+    let shown: Vec<String> = shown.collect();
+    (!shown.is_empty()).then(|| format!("Adjusted from what is entered: {}{more}.", shown.join("; ")))
 }
 
 /// The rows that no role names, those with one heading together.

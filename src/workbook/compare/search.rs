@@ -7,8 +7,7 @@ use hence_core::{ErrorKind, Parameter, Spec, Switching, Where, switching_multipl
 use super::Valued;
 use crate::appraisal::{Choice, Stream};
 use crate::clock::base_year;
-use crate::measuring::{against, merged};
-use crate::outcome::{ChoiceOutcome, Flows};
+use crate::outcome::ChoiceOutcome;
 use crate::valuation::{npv_on, side};
 
 /// The multipliers of a stream that are stated.
@@ -154,7 +153,7 @@ fn parameter_entry(
         return noted("the two are valued at different bases");
     }
     let at = place(valued, option, opposite);
-    let flows = less(&own.dated, base.map(|base| &base.dated));
+    let flows = base.map_or_else(|| own.dated.clone(), |base| own.dated.less(&base.dated));
     match switching_values(&flows.net(), own.basis.spec(), &at, parameter, parameter.interval()) {
         Ok(Switching { values, unresolved, interval, moves }) => {
             let note = (!moves).then(|| format!("{parameter} moves nothing"));
@@ -176,31 +175,6 @@ fn place(valued: &Valued, option: usize, opposite: Option<usize>) -> Where {
     let choices = std::iter::once(option).chain(opposite);
     let length = choices.flat_map(|i| valued.outcomes[i].offsets.iter().copied()).fold(0.0, f64::max);
     Where { base_year: base_year(&valued.appraisal.choices[option].base.value), length: Some(length) }
-}
-
-/// The flows less those of another option.
-fn less(own: &Flows, other: Option<&Flows>) -> Flows {
-    let Some(other) = other else { return own.clone() };
-    let dated = |flows: &Flows, sign: f64| {
-        flows.offsets.iter().zip(&flows.flows).map(|(t, x)| (*t, sign * x)).collect::<Vec<_>>()
-    };
-    let (offsets, flows) = merged(&[dated(own, 1.0), dated(other, -1.0)].concat());
-    let mut endless = [own.endless.clone(), against(&other.endless)].concat();
-    // What both have for ever is nothing between them.
-    while let Some((a, b)) = cancelling(&endless) {
-        endless.remove(b);
-        endless.remove(a);
-    }
-    Flows { offsets, flows, endless }
-}
-
-/// Two flows without end that cancel, the earlier first.
-fn cancelling(endless: &[hence_core::Endless]) -> Option<(usize, usize)> {
-    let opposite = |a: &hence_core::Endless, b: &hence_core::Endless| {
-        a.start == b.start && a.flow == -b.flow && a.growth == b.growth && a.every == b.every
-    };
-    (0..endless.len())
-        .find_map(|a| (a + 1..endless.len()).find(|&b| opposite(&endless[a], &endless[b])).map(|b| (a, b)))
 }
 
 /// A stream's present value with its sign in the net.
@@ -298,7 +272,7 @@ pub(super) fn npv_at(valued: &Valued, change: &dyn Fn(&Spec) -> Option<Spec>) ->
             let length = Some(outcome.offsets.iter().copied().fold(0.0, f64::max));
             let at = Where { base_year: base_year(&choice.base.value), length };
             let curve = change(outcome.basis.spec())?.curve(&at).ok()?;
-            npv_on(&valued.appraisal, choice, &curve, outcome.timing).ok().filter(|npv| npv.is_finite())
+            npv_on(&valued.appraisal, choice, outcome, &curve).ok().filter(|npv| npv.is_finite())
         })
         .collect()
 }

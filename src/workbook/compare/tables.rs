@@ -124,7 +124,7 @@ fn switching(comparison: &Comparison) -> Sheet {
             let (low, high) = entry.interval;
             let text = format!("{} to {}", shown(&entry.moved, low), shown(&entry.moved, high));
             sheet.text(row, 4, Style::Wrapped, text);
-            sheet.text(row, 5, Style::Wrapped, note(entry));
+            sheet.text(row, 5, Style::Wrapped, remark(entry));
         }
     }
     sheet
@@ -147,7 +147,7 @@ pub fn words(comparison: &Comparison) -> String {
 }
 
 fn put(sheet: &mut Sheet, row: u32, col: u32, moved: &Moved, x: f64) {
-    sheet.number(row, col, if in_percent(moved) { Style::Percent } else { Style::Exact }, x);
+    sheet.number(row, col, if in_percent(moved) { Style::Percent } else { Style::Value }, x);
 }
 
 fn in_percent(moved: &Moved) -> bool {
@@ -165,7 +165,7 @@ pub fn shown(moved: &Moved, x: f64) -> String {
 }
 
 /// The note on an entry, unsettled places included.
-pub fn note(entry: &Entry) -> String {
+pub fn remark(entry: &Entry) -> String {
     let mut notes: Vec<String> = entry.note.iter().cloned().collect();
     let open = entry.unresolved.iter().filter(|_| entry.note.is_none());
     notes.extend(open.map(|&(low, high)| {

@@ -75,6 +75,8 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
             uplift: Given { value: 0.0, at: None, from: "default".to_owned() },
             residual: None,
             tail: None,
+            growth: None,
+            basis: None,
         });
     }
     if streams.is_empty() && !context.failed() {

@@ -10,7 +10,7 @@ use crate::roles::{ROLES, Role, key};
 
 use super::find::Named;
 use super::groups::{Group, Split, names_of};
-use super::{Context, counted, settings, streams, targets, texts, years};
+use super::{Context, counted, prices, settings, streams, targets, texts, years};
 
 /// The options, and what they share.
 pub(super) struct Built {
@@ -64,6 +64,7 @@ fn choice(
     let base = years::base(context, split.of(group, Role::Base), axis);
     let basis = settings::basis(context, split.of(group, Role::Basis), told);
     let timing = split.of(group, Role::Timing).and_then(|named| settings::timing(context, named));
+    let prices = prices::prices(context, split, group, axis);
     let streams = streams::streams(context, split, group, axis);
     let effects = streams::effects(context, split, group, axis);
     let (base, basis) = (base?, basis?);
@@ -72,6 +73,7 @@ fn choice(
         base,
         basis,
         timing,
+        prices,
         axis: index,
         streams,
         effects,
@@ -258,8 +260,13 @@ fn names_of_kind(choice: &Choice, wanted: fn(StreamKind) -> bool) -> String {
 
 /// Units, uplifts and the like of streams that there are none of.
 fn check_settings(context: &mut Context, split: &Split, choices: &[Choice]) {
-    let setting =
-        |named: &&Named| matches!(named.name.role, Role::Unit | Role::Uplift | Role::Residual | Role::Tail);
+    let setting = |named: &&Named| {
+        let about = matches!(
+            named.name.role,
+            Role::Unit | Role::Uplift | Role::Residual | Role::Tail | Role::Growth | Role::Basis
+        );
+        about && named.name.stream.is_some()
+    };
     let own =
         split.groups.iter().zip(choices).map(|(group, choice)| (&group.named, std::slice::from_ref(choice)));
     let all: Vec<_> = own.chain(std::iter::once((&split.shared, choices))).collect();

@@ -4,7 +4,7 @@ use std::collections::{BTreeMap, BTreeSet};
 
 use hence_core::sum;
 
-use crate::appraisal::{Choice, Covered, Direction, StreamKind, TargetRole};
+use crate::appraisal::{Choice, Covered, Direction, Given, Levels, StreamKind, TargetRole};
 use crate::problem::Place;
 use crate::reading::Value;
 use crate::references::{Cell, Range, SheetRange};
@@ -225,9 +225,13 @@ fn words(choice: &Choice) -> Vec<(&SheetRange, String)> {
         words.push((&stream.at, format!("{kind}: {}", stream.name)));
     }
     words.extend(choice.effects.iter().map(|effect| (&effect.at, format!("effect: {}", effect.name))));
+    if let Some(Given { value: Levels::Index(_), at: Some(at), .. }) = &choice.prices.levels {
+        words.push((at, "prices".to_owned()));
+    }
     for target in &choice.targets {
         let role = match &target.role {
             TargetRole::Factor => "factor".to_owned(),
+            TargetRole::StreamFactor(stream) => format!("factor: {stream}"),
             TargetRole::Rates => "rates".to_owned(),
             TargetRole::PvByYear(None) => "pv".to_owned(),
             TargetRole::PvByYear(Some(stream)) => format!("pv: {stream}"),

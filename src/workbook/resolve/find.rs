@@ -91,8 +91,7 @@ pub(super) fn unknown_name(place: Place, slip: &str) -> Problem {
 pub(super) fn later(name: &RoleName, place: Place) -> Option<Problem> {
     let reason = match name.role.info().status {
         Status::Supported => return None,
-        Status::SupportedAlone(_) if name.stream.is_none() => return None,
-        Status::SupportedAlone(reason) | Status::Later(reason) => reason,
+        Status::Later(reason) => reason,
     };
     let (why, what) = reason.split_once(": ").unwrap_or((reason, "leave this name out"));
     Some(

@@ -7,6 +7,7 @@ mod counted;
 mod coverage;
 mod find;
 mod groups;
+mod prices;
 mod report;
 mod series;
 mod settings;

@@ -241,7 +241,7 @@ pub(super) fn residual(context: &mut Context, named: &Named) -> Option<Given<f64
 }
 
 /// The number of a role's one cell.
-fn amount(context: &mut Context, named: &Named) -> Option<f64> {
+pub(super) fn amount(context: &mut Context, named: &Named) -> Option<f64> {
     let cell = single(context, named)?;
     match number(&cell, named.place()) {
         Ok(Some(number)) => Some(number),

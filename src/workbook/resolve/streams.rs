@@ -13,7 +13,7 @@ use super::find::Named;
 use super::groups::{Group, Split};
 use super::settings::{self, Signs};
 use super::years::direction;
-use super::{Context, blocks, note};
+use super::{Context, blocks, note, prices};
 
 /// The streams of an option, its own first, then the shared ones.
 pub(super) fn streams(context: &mut Context, split: &Split, group: &Group, axis: &Axis) -> Vec<Stream> {
@@ -42,6 +42,8 @@ pub(super) fn streams(context: &mut Context, split: &Split, group: &Group, axis:
                     uplift: Given { value: 0.0, at: None, from: "default".to_owned() },
                     residual: None,
                     tail: None,
+                    growth: None,
+                    basis: None,
                 });
             }
         }
@@ -177,6 +179,8 @@ fn add_settings(context: &mut Context, split: &Split, group: &Group, stream: &mu
         );
     }
     stream.tail = about(Role::Tail).and_then(|named| settings::tail(context, named));
+    stream.basis = about(Role::Basis).and_then(|named| settings::basis(context, Some(named), None));
+    stream.growth = about(Role::Growth).and_then(|named| prices::growth(context, named));
 }
 
 /// A cost stream wholly negative with nothing declared is a question, not a benefit.

@@ -32,6 +32,12 @@ pub(super) fn add_shared(context: &mut Context, split: &Split, choices: &mut [Ch
                 == (pair[1].axis, &pair[1].base.value, &pair[1].basis.value)
                 && pair[0].timing.as_ref().map(|t| t.value) == pair[1].timing.as_ref().map(|t| t.value)
         });
+        let own_basis = |choice: &Choice| {
+            let stream = named.name.stream.as_deref().map(key)?;
+            let stream = choice.streams.iter().find(|s| key(&s.name) == stream)?;
+            stream.basis.as_ref().map(|given| given.value.clone())
+        };
+        let alike = alike && choices.windows(2).all(|pair| own_basis(&pair[0]) == own_basis(&pair[1]));
         let by_year = matches!(named.name.role, Role::Factor | Role::Rates);
         if by_year
             && alike
@@ -67,7 +73,10 @@ pub(super) fn add_shared(context: &mut Context, split: &Split, choices: &mut [Ch
 fn target(context: &mut Context, named: &Named, choice: &Choice, axis: &Axis) -> Option<Target> {
     let single = named.at.range.is_single();
     let role = match named.name.role {
-        Role::Factor => TargetRole::Factor,
+        Role::Factor => match stream_of(context, named, choice)? {
+            Some(stream) => TargetRole::StreamFactor(stream),
+            None => TargetRole::Factor,
+        },
         Role::Rates => TargetRole::Rates,
         Role::Pv if single => TargetRole::PvTotal(stream_of(context, named, choice)?),
         Role::Pv => TargetRole::PvByYear(stream_of(context, named, choice)?),
@@ -80,7 +89,10 @@ fn target(context: &mut Context, named: &Named, choice: &Choice, axis: &Axis) ->
         Role::Payback => TargetRole::Payback,
         _ => return None,
     };
-    let by_year = matches!(role, TargetRole::Factor | TargetRole::Rates | TargetRole::PvByYear(_));
+    let by_year = matches!(
+        role,
+        TargetRole::Factor | TargetRole::StreamFactor(_) | TargetRole::Rates | TargetRole::PvByYear(_)
+    );
     if by_year {
         if let Some(problem) = wrong_shape(named, axis) {
             context.report(problem);
@@ -204,12 +216,22 @@ fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(SheetRange, String)> {
         inputs.extend(
             choice.timing.iter().filter_map(|timing| Some((timing.at.clone()?, timing.from.clone()))),
         );
+        let prices = &choice.prices;
+        inputs
+            .extend(prices.declared.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));
+        inputs.extend(prices.levels.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));
         inputs.extend(choice.effects.iter().map(|effect| (effect.at.clone(), effect.name.clone())));
         for stream in &choice.streams {
             inputs.push((stream.at.clone(), stream.from.clone()));
+            inputs.extend(
+                stream.basis.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))),
+            );
             inputs.extend(stream.uplift.at.iter().map(|at| (at.clone(), stream.uplift.from.clone())));
             inputs.extend(
                 stream.residual.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))),
+            );
+            inputs.extend(
+                stream.growth.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))),
             );
             inputs
                 .extend(stream.tail.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));

@@ -2,8 +2,9 @@
 
 use hence_core::{Basis, Eras, Where};
 
-use super::AuditInput;
+use super::{AuditInput, block_basis};
 use crate::clock::base_year;
+use crate::formulas::side;
 use crate::graft::{ChartFinish, Legend};
 use crate::layout::Layout;
 use crate::references::{Cell, Range, SheetRange};
@@ -50,12 +51,15 @@ fn finish(title: &str, x: &str, y: &str, x_format: &str, y_format: &str) -> Char
 
 fn factor_curve(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, finishes: &mut Vec<ChartFinish>) {
     let title = "Discount factor by year";
-    let series = layout.blocks.iter().map(|block| {
-        let names: Vec<&str> =
-            block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
-        let basis = input.outcomes[block.choice].basis.canonical();
-        let name = if layout.blocks.len() == 1 { basis } else { format!("{}: {basis}", names.join(", ")) };
-        Series { name, x: layout.offsets(block.choice), y: layout.factors(block.choice) }
+    let series = layout.blocks.iter().enumerate().map(|(k, block)| {
+        let basis = block_basis(input, block).canonical();
+        let whose = layout.whose(k, input.appraisal);
+        let name = if layout.blocks.len() == 1 { basis } else { format!("{whose}: {basis}") };
+        let y = block.stream.map_or_else(
+            || layout.factors(block.choice),
+            |stream| layout.stream_factors(block.choice, stream),
+        );
+        Series { name, x: layout.offsets(block.choice), y }
     });
     let chart = Chart { kind: ChartKind::Lines, title: title.to_owned(), series: series.collect() };
     if !chart.series.is_empty() {
@@ -80,8 +84,9 @@ fn eras(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes: &mut
         let col = c as u32 + 1;
         sheet.text(top - 1, col, Style::Heading, &input.appraisal.choices[c].name);
         let mut totals = vec![0.0; edges.len() + 1];
-        for ((t, net), d) in outcome.offsets.iter().zip(&outcome.net).zip(&outcome.factors) {
-            totals[edges.iter().filter(|&&edge| *t > edge).count()] += net * d;
+        for (i, t) in outcome.offsets.iter().enumerate() {
+            let sides = input.appraisal.choices[c].streams.iter().map(|stream| side(stream.kind));
+            totals[edges.iter().filter(|&&edge| *t > edge).count()] += outcome.net_value(i, sides);
         }
         for (k, total) in totals.into_iter().enumerate() {
             sheet.number(top + k as u32, col, Style::Money, total);
@@ -212,7 +217,7 @@ fn npv_at(input: &AuditInput<'_>, c: usize, rate: f64) -> Option<f64> {
     let choice = &input.appraisal.choices[c];
     let at = Where { base_year: base_year(&choice.base.value), length: None };
     let curve = Basis::from_rate(rate).ok()?.curve(&at).ok()?;
-    npv_on(input.appraisal, choice, &curve, input.outcomes[c].timing).ok()
+    npv_on(input.appraisal, choice, &input.outcomes[c], &curve).ok()
 }
 
 #[cfg(test)]

@@ -1,6 +1,7 @@
 //! The checks sheet: every factor, present value and filled cell against a second route, live.
 
 use super::lines::{AGREES, DIFFERS, Line, Live, col};
+use super::nets::Nets;
 use super::rebuild::Rebuilt;
 use super::{AuditInput, TargetCell, discounting::side_words, discounting::table_ref, offsets, settings};
 use crate::appraisal::{Held, Label, StreamKind, TargetRole};
@@ -31,6 +32,12 @@ pub(super) struct Checks {
     pub awaiting: usize,
     /// Number of checks that have a second route.
     pub independent: usize,
+    /// The net flows of each option, live, where they are whole.
+    pub nets: Vec<Option<Nets>>,
+    /// Of all checks, those of multipliers of flows.
+    pub multipliers: usize,
+    /// Of all checks, those of factors on a stream's own basis.
+    pub own_factors: usize,
 }
 
 /// Where the parts of an option's section stand.
@@ -44,6 +51,10 @@ pub(super) struct Section {
     pub streams: u32,
     /// Costs; benefits, net, the increments and the sum of factors follow.
     pub sums: u32,
+    /// The first factor on a stream's own basis.
+    pub own_factors: u32,
+    /// The first multiplier of flows.
+    pub multipliers: u32,
     /// The first target cell.
     pub cells: u32,
     /// The row after its end.
@@ -81,9 +92,8 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
         make.section(&mut sheet, c, &mut lines);
     }
     for (k, rebuilt) in make.rebuilt.iter().enumerate() {
-        let names: Vec<&str> =
-            layout.blocks[k].choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
-        rebuilt.write(&mut sheet, &format!("Inputs of the second route: {}", names.join(", ")));
+        let whose = layout.whose(k, input.appraisal);
+        rebuilt.write(&mut sheet, &format!("Inputs of the second route: {whose}"));
     }
     for (row, line) in &lines {
         line.write(&mut sheet, *row);
@@ -94,6 +104,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
         last: Cell { row: end.max(FIRST + 1), col: col::RESULT },
     };
     Checks {
+        nets: (0..input.appraisal.choices.len()).map(|c| Nets::of(&make, c)).collect(),
         sheet,
         results,
         count: lines.len(),
@@ -101,6 +112,8 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
         differing: lines.iter().filter(|(_, l)| !l.agrees()).map(|(_, l)| l.place.clone()).collect(),
         awaiting: lines.iter().filter(|(_, l)| l.awaits).count(),
         independent: lines.iter().filter(|(_, l)| l.rebuilt.is_some()).count(),
+        own_factors: (0..make.sections.len()).map(|c| make.own_blocks_in(c).len() * make.rows(c)).sum(),
+        multipliers: (0..make.sections.len()).map(|c| make.series_in(c).len() * make.rows(c)).sum(),
     }
 }
 
@@ -153,15 +166,32 @@ impl<'a> Maker<'a> {
             let streams = years + self.layout.block(c).rows;
             let sums = streams + choice.streams.len() as u32;
             let increments = if self.layout.rows[c].increment.is_some() { 3 } else { 0 };
-            let start = sums + 4 + increments;
+            let own_factors = sums + 4 + increments;
+            let multipliers = own_factors + (self.own_blocks_in(c).len() * self.rows(c)) as u32;
+            let start = multipliers + (self.series_in(c).len() * self.rows(c)) as u32;
             let end = start + cells.len() as u32;
-            self.sections.push(Section { top: row, years, streams, sums, cells: start, end });
+            let top = row;
+            self.sections.push(Section {
+                top,
+                years,
+                streams,
+                sums,
+                own_factors,
+                multipliers,
+                cells: start,
+                end,
+            });
             self.targets.push(cells);
             row = end + 1;
         }
         for rebuilt in &mut self.rebuilt {
             row = rebuilt.place(row + 1);
         }
+    }
+
+    /// Number of an option's years.
+    fn rows(&self, c: usize) -> usize {
+        self.layout.block(c).rows as usize
     }
 
     /// The target whose cells stand in the lines of the years.
@@ -203,6 +233,8 @@ impl<'a> Maker<'a> {
             lines.push((at.streams + s as u32, self.stream(c, s)));
         }
         self.sums(c, lines);
+        self.own_factor_lines(c, lines);
+        self.multiplier_lines(c, lines);
         for (k, cell) in self.targets[c].iter().enumerate() {
             let row = at.cells + k as u32;
             lines.push((row, self.target(c, cell, row)));
@@ -216,14 +248,7 @@ impl<'a> Maker<'a> {
         let axis = &self.input.appraisal.axes[choice.axis];
         let label = &axis.labels[i];
         let row = self.sections[c].years + i as u32;
-        let (value, style) = match label_value(label, self.input.appraisal.date1904) {
-            LabelValue::Number(x, true) => (Cached::Number(x), Style::Date),
-            LabelValue::Number(x, false) => (
-                Cached::Number(x),
-                if matches!(label, Label::Offset(_)) { Style::Offset } else { Style::Year },
-            ),
-            LabelValue::Text(text) => (Cached::Text(text), Style::Text),
-        };
+        let (value, style) = label_live(label, self.input.appraisal.date1904);
         let source = refer_cell(self.home, &axis.at.sheet, nth(axis.at.range, i));
         let target = self.factor_target(c).map(|t| &choice.targets[t]);
         let factors = self.layout.factors(c);
@@ -234,7 +259,7 @@ impl<'a> Maker<'a> {
         let label_cell = absolute_cell(row, col::WHAT);
         let offset = offsets::formula(&label_cell, label, choice, outcome.timing, self.home);
         line.offset = Some(Live::number(offset, rebuilt.offsets[i]));
-        line.rebuilt = self.rebuilt_factor(c, i);
+        line.rebuilt = self.rebuilt_factor(c, None, i);
         let recorded = refer_cell(self.home, &factors.sheet, nth(factors.range, i));
         line.recorded = Live::number(recorded, outcome.factors[i]);
         if let Some(t) = target {
@@ -255,30 +280,37 @@ impl<'a> Maker<'a> {
         &self.rebuilt[self.layout.block_of[c]]
     }
 
-    pub(super) fn rebuilt_factor(&self, c: usize, i: usize) -> Option<Live> {
-        let row = self.sections[c].years + i as u32;
-        let rebuilt = self.rebuilt(c);
+    /// The second route of an option, or of one of its streams.
+    pub(super) fn rebuilt_of(&self, c: usize, stream: Option<usize>) -> &Rebuilt {
+        &self.rebuilt[self.layout.block_index(c, stream)]
+    }
+
+    pub(super) fn rebuilt_factor(&self, c: usize, stream: Option<usize>, i: usize) -> Option<Live> {
+        let row = self.factor_rows(c, stream).0 + i as u32;
+        let rebuilt = self.rebuilt_of(c, stream);
         let factor = rebuilt.factor(i).filter(|d| d.is_finite())?;
         Some(Live::number(rebuilt.formula(&absolute_cell(row, col::OFFSET))?, factor))
     }
 
-    pub(super) fn has_route(&self, c: usize) -> bool {
-        !self.input.outcomes[c].factors.is_empty() && self.rebuilt_factor(c, 0).is_some()
+    pub(super) fn has_route(&self, c: usize, stream: Option<usize>) -> bool {
+        !self.input.outcomes[c].factors.is_empty() && self.rebuilt_factor(c, stream, 0).is_some()
     }
 
     /// The present value of a stream by the second route.
     pub(super) fn rebuilt_stream(&self, c: usize, s: usize) -> Option<f64> {
         let stream = &self.input.appraisal.choices[c].streams[s];
-        let rebuilt = self.rebuilt(c);
+        let rebuilt = self.rebuilt_of(c, Some(s));
         let multiplier = stream.sign * stream.unit * (1.0 + stream.uplift.value);
         let mut sum = 0.0;
+        let by = |i| self.multiplier(c, s, i).map_or(1.0, |(_, by)| by);
         for (i, raw) in stream.raw.iter().enumerate() {
-            sum += raw * rebuilt.factor(i)?;
+            sum += raw * rebuilt.factor(i)? * by(i);
         }
         let mut total = multiplier * sum;
         if let Some(given) = &stream.residual {
-            let last = rebuilt.factor(stream.raw.len().checked_sub(1)?)?;
-            total += residual_sign(stream.kind) * stream.unit * given.value * last;
+            let year = stream.raw.len().checked_sub(1)?;
+            let last = rebuilt.factor(year)?;
+            total += residual_sign(stream.kind) * stream.unit * given.value * last * by(year);
         }
         let tail = match (&stream.tail, self.rebuilt_tail(c, s)) {
             (None, _) => 0.0,
@@ -306,15 +338,24 @@ impl<'a> Maker<'a> {
         let now = Live::number(table_ref(self.home, self.layout, row, Column::Value), outcome.pv);
         let table = place(&self.layout.names.discounting, self.layout.cell(row, Column::Value));
         let mut line = Line::cell(table, what, Live::constant(outcome.pv), Some(now), tolerance(gross));
-        if self.has_route(c)
+        if self.has_route(c, Some(s))
             && let Some(value) = self.rebuilt_stream(c, s)
         {
-            let last = at.streams - 1;
-            let flows = column(col::FLOWS + s as u32, at.years, last);
-            let factors = column(col::REBUILT, at.years, last);
-            let mut text = format!("{}SUMPRODUCT({flows},{factors})", scale(stream, self.home));
+            let flows = column(col::FLOWS + s as u32, at.years, at.streams - 1);
+            let (first, last) = self.factor_rows(c, Some(s));
+            let factors = column(col::REBUILT, first, last);
+            let multipliers = self.multiplier_rows(c, s);
+            let by = multipliers.map(|(from, to)| format!(",{}", column(col::REBUILT, from, to)));
+            let mut text = format!(
+                "{}SUMPRODUCT({flows},{factors}{})",
+                scale(stream, self.home),
+                by.unwrap_or_default()
+            );
             if let Some(residual) = residual(stream, self.home) {
                 text.push_str(&format!("{residual}*{}", absolute_cell(last, col::REBUILT)));
+                if let Some((_, last)) = multipliers {
+                    text.push_str(&format!("*{}", absolute_cell(last, col::REBUILT)));
+                }
             }
             if let Some((tail, _)) = tail {
                 text.push_str(&format!("+{tail}"));
@@ -337,7 +378,7 @@ impl<'a> Maker<'a> {
                 StreamKind::Damage => benefits -= pv,
             }
         }
-        self.has_route(c).then_some([costs, benefits, benefits - costs])
+        self.has_route(c, None).then_some([costs, benefits, benefits - costs])
     }
 
     fn sums(&self, c: usize, lines: &mut Vec<(u32, Line)>) {
@@ -431,6 +472,17 @@ pub(super) fn held(held: &Held) -> Cached {
         Held::Text(text) => Cached::Text(text.clone()),
         Held::Formula { shown: Some(shown), .. } if !shown.starts_with('#') => Cached::Text(shown.clone()),
         Held::Blank | Held::Error(_) | Held::Formula { value: None, .. } => Cached::None,
+    }
+}
+
+/// A label as a cell holds it, and how it looks.
+pub(super) fn label_live(label: &Label, date1904: bool) -> (Cached, Style) {
+    match label_value(label, date1904) {
+        LabelValue::Number(x, true) => (Cached::Number(x), Style::Date),
+        LabelValue::Number(x, false) => {
+            (Cached::Number(x), if matches!(label, Label::Offset(_)) { Style::Offset } else { Style::Year })
+        }
+        LabelValue::Text(text) => (Cached::Text(text), Style::Text),
     }
 }
 

@@ -1,9 +1,10 @@
 //! The sheet Discounting: offsets, forward rates and factors by year, and the present values.
 
-use super::AuditInput;
-use crate::appraisal::StreamKind;
+use super::{AuditInput, block_basis};
+use crate::adjust;
+use crate::appraisal::{Label, StreamKind};
 use crate::formulas::{NO_ANNUAL, no_ratio, one, pv_expression, refer, sum_expression};
-use crate::layout::{Column, DATA_ROW, HEADING_ROW, LabelValue, Layout, label_value};
+use crate::layout::{Column, DATA_ROW, HEADING_ROW, LabelValue, Layout, Series, label_value};
 use crate::patch::Cached;
 use crate::references::{Cell, SheetRange};
 use crate::writer::{Sheet, Style};
@@ -36,6 +37,9 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Sheet {
     for k in 0..layout.blocks.len() {
         block(&mut sheet, input, layout, k);
     }
+    for series in &layout.series {
+        multipliers(&mut sheet, input, series);
+    }
     table(&mut sheet, input, layout);
     sheet.freeze(DATA_ROW, 0);
     sheet.repeat(BASIS_ROW, HEADING_ROW);
@@ -46,12 +50,15 @@ fn block(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, k: usize) {
     let block = &layout.blocks[k];
     let choice = &input.appraisal.choices[block.choice];
     let outcome = &input.outcomes[block.choice];
-    let options: Vec<&str> =
-        block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
+    let basis = block_basis(input, block);
+    let (factors, forward) = match block.stream.and_then(|s| outcome.streams[s].own.as_ref()) {
+        Some(own) => (&own.factors, &own.forward),
+        None => (&outcome.factors, &outcome.forward),
+    };
     let (first, last) = (block.column, block.column + 3);
-    let canonical = format!("Basis: {} ({})", outcome.basis.canonical(), options.join(", "));
+    let canonical = format!("Basis: {} ({})", basis.canonical(), layout.whose(k, input.appraisal));
     sheet.paragraph(BASIS_ROW, first, last, Style::Strong, canonical);
-    sheet.paragraph(WORDS_ROW, first, last, Style::Wrapped, outcome.basis.words());
+    sheet.paragraph(WORDS_ROW, first, last, Style::Wrapped, basis.words());
     let timing = format!("Base {}; {}.", outcome.base_words, outcome.timing_sentence.trim_end_matches('.'));
     sheet.paragraph(TIMING_ROW, first, last, Style::Wrapped, timing);
     for (i, heading) in ["Year", "Offset (years)", "Forward rate", "Factor"].iter().enumerate() {
@@ -60,18 +67,60 @@ fn block(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, k: usize) {
     let labels = &input.appraisal.axes[choice.axis].labels;
     for (i, label) in labels.iter().enumerate() {
         let row = DATA_ROW + i as u32;
-        match label_value(label, input.appraisal.date1904) {
-            LabelValue::Number(x, true) => sheet.number(row, first, Style::Date, x),
-            LabelValue::Number(x, false) if x.fract() == 0.0 => sheet.number(row, first, Style::Year, x),
-            LabelValue::Number(x, false) => sheet.number(row, first, Style::Offset, x),
-            LabelValue::Text(text) => sheet.text(row, first, Style::Text, text),
-        }
+        put_label(sheet, input, label, (row, first));
         sheet.number(row, first + 1, Style::Offset, outcome.offsets[i]);
-        if let Some(rate) = outcome.forward[i] {
+        if let Some(rate) = forward[i] {
             sheet.number(row, first + 2, Style::Rate, rate);
         }
-        sheet.number(row, first + 3, Style::Factor, outcome.factors[i]);
+        sheet.number(row, first + 3, Style::Factor, factors[i]);
     }
+}
+
+fn put_label(sheet: &mut Sheet, input: &AuditInput<'_>, label: &Label, (row, col): (u32, u32)) {
+    match label_value(label, input.appraisal.date1904) {
+        LabelValue::Number(x, true) => sheet.number(row, col, Style::Date, x),
+        LabelValue::Number(x, false) if x.fract() == 0.0 => sheet.number(row, col, Style::Year, x),
+        LabelValue::Number(x, false) => sheet.number(row, col, Style::Offset, x),
+        LabelValue::Text(text) => sheet.text(row, col, Style::Text, text),
+    }
+}
+
+/// What multiplies flows year by year.
+fn multipliers(sheet: &mut Sheet, input: &AuditInput<'_>, series: &Series) {
+    let (first, last) = (series.column, series.column + 1);
+    sheet.columns(first, last, 18.0);
+    sheet.columns(last + 1, last + 1, 3.0);
+    let (c, s) = series.users[0];
+    let choice = &input.appraisal.choices[c];
+    sheet.paragraph(BASIS_ROW, first, last, Style::Strong, format!("Multiplies {}", users(input, series)));
+    sheet.paragraph(
+        WORDS_ROW,
+        first,
+        last,
+        Style::Wrapped,
+        adjust::multiplier_words(&choice.streams[s], choice),
+    );
+    for (i, heading) in ["Year", "Multiplier"].iter().enumerate() {
+        sheet.text(HEADING_ROW, first + i as u32, Style::Heading, heading);
+    }
+    let labels = &input.appraisal.axes[choice.axis].labels;
+    let values = input.outcomes[c].streams[s].multipliers.iter().flatten();
+    for (i, (label, value)) in labels.iter().zip(values).enumerate() {
+        let row = DATA_ROW + i as u32;
+        put_label(sheet, input, label, (row, first));
+        sheet.number(row, last, Style::Factor, *value);
+    }
+}
+
+/// The streams of a series in words, with their options where there are several.
+fn users(input: &AuditInput<'_>, series: &Series) -> String {
+    let many = input.appraisal.choices.len() > 1;
+    let name = |&(c, s): &(usize, usize)| {
+        let choice = &input.appraisal.choices[c];
+        let stream = &choice.streams[s].name;
+        if many { format!("{stream} ({})", choice.name) } else { stream.clone() }
+    };
+    series.users.iter().map(name).collect::<Vec<_>>().join(", ")
 }
 
 /// The side of a stream in words.
@@ -118,7 +167,7 @@ fn streams(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, c: usize)
         sheet.text(row, at(Column::Option), Style::Text, &choice.name);
         sheet.text(row, at(Column::Stream), Style::Text, &stream.name);
         sheet.text(row, at(Column::Side), Style::Text, side_words(stream.kind));
-        let sum = sum_expression(stream, &home);
+        let sum = sum_expression(input.appraisal, layout, c, s, &home);
         sheet.formula(row, at(Column::Undiscounted), Style::Money, sum, Cached::Number(result.undiscounted));
         if stream.tail.is_some() {
             sheet.number(row, at(Column::Tail), Style::Money, result.pv_tail);

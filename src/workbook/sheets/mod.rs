@@ -7,20 +7,25 @@ mod coverage;
 mod discounting;
 mod growth_route;
 mod lines;
+mod multipliers;
+mod nets;
 mod offsets;
 pub(crate) mod own;
+mod own_factors;
 mod rebuild;
 mod second_route;
+mod sensitivity;
 mod settings;
 mod summary;
 mod tails;
 mod targets;
 
-use hence_core::CAUTION;
+use hence_core::{Basis, CAUTION};
 
 use crate::appraisal::Appraisal;
+use crate::compare::Sensitivity;
 use crate::graft::ChartFinish;
-use crate::layout::Layout;
+use crate::layout::{Block, Layout};
 use crate::names_edit::NewName;
 use crate::outcome::ChoiceOutcome;
 use crate::problem::{Problem, Result};
@@ -31,6 +36,7 @@ use crate::writer::{self, Content, Sheet, Style};
 pub(crate) use charts::era_words;
 pub use own::{DIGEST, OWN, VERDICT};
 pub use summary::VERDICT_AGREES;
+pub(crate) use summary::adjusted;
 pub(crate) use targets::role_words;
 
 /// The visible names of hence's sheets in this workbook, chosen so that they clash with nothing.
@@ -44,6 +50,8 @@ pub struct SheetNames {
     pub coverage: String,
     /// Each factor and total rebuilt by a second route, live.
     pub checks: String,
+    /// Other rates, switching values, streams by their effect, where the rate comes from.
+    pub sensitivity: String,
     /// Sheet, cell, role, before, after.
     pub changes: String,
     /// Factor curve, PV by era, NPV against a flat rate.
@@ -145,6 +153,8 @@ pub struct AuditInput<'a> {
     pub problems: &'a [Problem],
     /// One a choice: the same under the schedule that its body wants run beside the declared one.
     pub companions: &'a [Option<Companion>],
+    /// What other rates would make of the decision.
+    pub sensitivity: &'a Sensitivity,
     /// Notes to put back.
     pub carried: &'a [Carried],
     /// What differs in the package by design, a sentence each.
@@ -178,16 +188,31 @@ pub struct Composed {
     pub built: Built,
 }
 
+/// The basis whose factors a block holds.
+fn block_basis<'a>(input: &AuditInput<'a>, block: &Block) -> &'a Basis {
+    let outcome = &input.outcomes[block.choice];
+    block.stream.map_or(&outcome.basis, |stream| outcome.basis_of(stream))
+}
+
 /// Composes the sheet Discounting and the audit sheets.
 pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
     let checks = checks::sheet(input, layout);
     let coverage = coverage::sheet(input);
     let summary = summary::sheet(input, layout, &checks, &coverage);
-    let (charts, finishes) = charts::sheet(input, layout);
+    let (sensitivity, mut finishes) = sensitivity::sheet(input, layout, &checks);
+    let (charts, more) = charts::sheet(input, layout);
+    finishes.extend(more);
     let verdict_at = summary::verdict_text(&summary.sheet.name, summary.cell);
     let discounting = discounting::sheet(input, layout);
-    let mut sheets =
-        vec![discounting, summary.sheet, coverage.sheet, checks.sheet, changes::sheet(input), charts];
+    let mut sheets = vec![
+        discounting,
+        summary.sheet,
+        coverage.sheet,
+        checks.sheet,
+        sensitivity,
+        changes::sheet(input),
+        charts,
+    ];
     let names = sheets.iter().flat_map(own::marks).collect();
     for sheet in &mut sheets {
         put_back(sheet, input.carried);

@@ -60,7 +60,7 @@ impl Rebuilt {
         let service_years = (length - 1e-9).ceil().max(0.0) as u32;
         let reach = length.max(1.0).max(f64::from(service_years));
         let at = Where { base_year: base_year(&choice.base.value), length: Some(length) };
-        let route = Route::of(outcome.basis.spec(), &at, lowest, reach);
+        let route = Route::of(super::block_basis(input, block).spec(), &at, lowest, reach);
         let factor = |route: &Route, t: f64| {
             let at = route.factor(t);
             if averaged { (at + route.factor(t - 1.0)) / 2.0 } else { at }

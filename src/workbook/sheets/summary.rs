@@ -6,8 +6,9 @@ use super::checks::{Checks, counts};
 use super::coverage::{Coverage, places};
 use super::discounting::table_ref;
 use super::lines::DIFFERS;
-use super::{AuditInput, charts::era_words, charts::thousands};
-use crate::appraisal::{StreamKind, TargetRole};
+use super::{AuditInput, block_basis, charts::era_words, charts::thousands};
+use crate::adjust;
+use crate::appraisal::{Appraisal, StreamKind, TargetRole};
 use crate::formulas::{ENDLESS_IRR, NO_IRR, no_ratio, one, refer};
 use crate::layout::{Column, Layout};
 use crate::outcome::ChoiceOutcome;
@@ -157,16 +158,23 @@ impl Page {
     }
 
     fn basis(&mut self, input: &AuditInput<'_>, layout: &Layout) {
-        for block in &layout.blocks {
+        for (k, block) in layout.blocks.iter().enumerate() {
             let choice = &input.appraisal.choices[block.choice];
             let outcome = &input.outcomes[block.choice];
-            let names: Vec<&str> =
-                block.choices.iter().map(|&c| input.appraisal.choices[c].name.as_str()).collect();
-            self.section(&format!("Basis of {}", names.join(", ")));
-            self.pair("Basis", &format!("{} (from {})", outcome.basis.canonical(), choice.basis.from));
-            self.pair("In words, with its source", &outcome.basis.words());
+            let basis = block_basis(input, block);
+            let own = block.stream.and_then(|stream| choice.streams[stream].basis.as_ref());
+            let from = own.map_or(&choice.basis.from, |given| &given.from);
+            self.section(&format!("Basis of {}", layout.whose(k, input.appraisal)));
+            self.pair("Basis", &format!("{} (from {from})", basis.canonical()));
+            self.pair("In words, with its source", &basis.words());
+            if block.stream.is_some() {
+                // Base, timing and prices are its option's.
+                self.row += 1;
+                continue;
+            }
             self.pair("Base", &format!("{} (from {})", outcome.base_words, choice.base.from));
             self.pair("Timing", &outcome.timing_sentence);
+            self.pair("Prices", outcome.prices.as_deref().unwrap_or(""));
             self.row += 1;
         }
         self.sheet.paragraph(self.row, 0, LAST, Style::Strong, super::CAUTION);
@@ -340,16 +348,21 @@ impl Page {
         }
         self.row += 1;
         let factors: usize = input.outcomes.iter().map(|o| o.factors.len()).sum();
+        let (multipliers, factors) = (checks.multipliers, factors + checks.own_factors);
         let in_lines = input.cells.iter().filter(|cell| is_factor(input, cell)).count();
         let cells = input.cells.len() - in_lines;
-        let rest = checks.count.saturating_sub(factors + cells + checks.settings);
+        let rest = checks.count.saturating_sub(factors + multipliers + cells + checks.settings);
         for (label, number, allowed) in [
             ("Factors: second route, Discounting, filled cells", factors, "1e-9 relative"),
+            ("Multipliers of flows: prices and their growth", multipliers, "1e-9 relative"),
             ("Present values and totals on Discounting", rest, "1e-9 of the gross present value"),
             ("What the workbook states: base, basis, timing and the like", checks.settings, "none"),
             ("Other filled or compared cells", cells, "half of the last displayed unit, or 1e-9"),
             ("Undiscounted totals of valued rows", coverage.valued, "1e-9 relative, or 0.000001"),
         ] {
+            if number == 0 && label.starts_with("Multipliers") {
+                continue;
+            }
             self.sheet.text(self.row, 0, Style::Wrapped, label);
             self.sheet.number(self.row, 1, Style::Year, number as f64);
             // Room between the number and what it may differ by.
@@ -391,11 +404,18 @@ fn rates_of_return(outcome: &ChoiceOutcome) -> String {
     if all.is_empty() { NO_IRR.to_owned() } else { all.join("; ") }
 }
 
-/// Sign, unit, uplift, residual value and what follows the last year, a sentence for each stream that has any.
+/// What was made of the flows as entered, a sentence for each stream of which anything was.
 fn adjustments(input: &AuditInput<'_>) -> Vec<String> {
+    let all = adjusted(input.appraisal, input.outcomes);
+    all.into_iter().map(|(option, stream, words)| format!("{option}, {stream}: {words}.")).collect()
+}
+
+/// Sign, unit, uplift, residual value, what follows the last year, basis and prices, in words for each stream that has
+/// any: option, stream, words.
+pub(crate) fn adjusted(appraisal: &Appraisal, outcomes: &[ChoiceOutcome]) -> Vec<(String, String, String)> {
     let mut texts = Vec::new();
-    for choice in &input.appraisal.choices {
-        for stream in &choice.streams {
+    for (c, choice) in appraisal.choices.iter().enumerate() {
+        for (s, stream) in choice.streams.iter().enumerate() {
             let mut parts = Vec::new();
             if stream.sign < 0.0 {
                 parts.push("entered with the opposite sign".to_owned());
@@ -412,8 +432,14 @@ fn adjustments(input: &AuditInput<'_>) -> Vec<String> {
             if let Some(tail) = &stream.tail {
                 parts.push(format!("going on after the last year: {}", tail.value));
             }
+            if let Some(own) = &outcomes[c].streams[s].own {
+                parts.push(format!("discounted on {}, a basis of its own", own.basis.canonical()));
+            }
+            if choice.prices.levels.is_some() || stream.growth.is_some() {
+                parts.push(adjust::multiplier_words(stream, choice));
+            }
             if !parts.is_empty() {
-                texts.push(format!("{}, {}: {}.", choice.name, stream.name, parts.join("; ")));
+                texts.push((choice.name.clone(), stream.name.clone(), parts.join("; ")));
             }
         }
     }

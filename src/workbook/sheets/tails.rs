@@ -6,23 +6,25 @@ use hence_core::Tail;
 use super::checks::{Maker, absolute_cell};
 use super::lines::col;
 use super::offsets::shift;
-use super::rebuild::{base_year, constant};
+use super::rebuild::{Rebuilt, base_year, constant};
 use super::second_route::Form;
+use crate::adjust;
 use crate::appraisal::{Label, Stream};
 use crate::formulas::scale;
 use crate::writer::MAX_FORMULA;
 
 /// A number with the formula that gives it.
-type Rebuilt = (String, f64);
+type Priced = (String, f64);
 
 impl Maker<'_> {
     /// The value of what follows the last year of a stream; none without a tail, and where there is no second route
     /// (gamma and whole-horizon rates, flows before the base).
-    pub(super) fn rebuilt_tail(&self, c: usize, s: usize) -> Option<Rebuilt> {
+    pub(super) fn rebuilt_tail(&self, c: usize, s: usize) -> Option<Priced> {
         let stream = &self.input.appraisal.choices[c].streams[s];
-        let tail = &stream.tail.as_ref()?.value;
+        let choice = &self.input.appraisal.choices[c];
+        let tail = &adjust::tail(stream, choice).ok()??;
         let count = self.further(c, tail)?;
-        let rebuilt = self.rebuilt(c);
+        let rebuilt = self.rebuilt_of(c, Some(s));
         let last = rebuilt.offsets.len().checked_sub(1)?;
         let row = self.sections[c].years + last as u32;
         let cell = absolute_cell(row, col::OFFSET);
@@ -32,13 +34,15 @@ impl Maker<'_> {
         let (mut texts, mut value) = (Vec::new(), 0.0);
         for start in starts {
             let t = rebuilt.offsets[last] - start;
-            let (text, unit) = self.per_unit(c, tail, count, &format!("({cell}-{start})"), t)?;
+            let (text, unit) = self.per_unit(rebuilt, tail, count, &format!("({cell}-{start})"), t)?;
             texts.push(text);
             value += share * unit;
         }
         let flow = absolute_cell(row, col::FLOWS + s as u32);
-        let text = format!("{}{flow}*{share}*({})", scale(stream, self.home), texts.join("+"));
-        let total = last_flow(stream)? * value;
+        let (by, times) = self.multiplier(c, s, last).unwrap_or((String::new(), 1.0));
+        let by = if by.is_empty() { by } else { format!("*{by}") };
+        let text = format!("{}{flow}{by}*{share}*({})", scale(stream, self.home), texts.join("+"));
+        let total = last_flow(stream)? * times * value;
         (text.len() <= MAX_FORMULA && total.is_finite()).then_some((text, total))
     }
 
@@ -60,8 +64,14 @@ impl Maker<'_> {
     }
 
     /// The value per unit of the last flow, which stands at offset `t` (in cell `cell`).
-    fn per_unit(&self, c: usize, tail: &Tail, count: Option<f64>, cell: &str, t: f64) -> Option<Rebuilt> {
-        let rebuilt = self.rebuilt(c);
+    fn per_unit(
+        &self,
+        rebuilt: &Rebuilt,
+        tail: &Tail,
+        count: Option<f64>,
+        cell: &str,
+        t: f64,
+    ) -> Option<Priced> {
         let route = rebuilt.route.as_ref()?;
         let (mut texts, mut value) = (Vec::new(), 0.0);
         for (k, (weight, form)) in route.parts.iter().enumerate() {

@@ -32,7 +32,7 @@ impl Maker<'_> {
         let what = role_words(&target.role);
         let mut line = Line::cell(place(&cell.at.sheet, at), what, expected, Some(now), cell.tolerance);
         line.style = match target.role {
-            TargetRole::Factor => Style::Factor,
+            TargetRole::Factor | TargetRole::StreamFactor(_) => Style::Factor,
             TargetRole::Rates | TargetRole::Irr => Style::Rate,
             TargetRole::Ratio | TargetRole::Payback => Style::Ratio,
             _ => Style::Money,
@@ -67,25 +67,35 @@ impl Maker<'_> {
             _ => self.rebuilt_sums(c),
         };
         let sum_cell = |k: u32| refer_to(at.sums + shift + k);
-        let factor = || {
-            let row = at.years + i as u32;
-            Some((refer_to(row), self.rebuilt_factor(c, i).and_then(|_| self.rebuilt(c).factor(i))?))
+        let factor = |s: Option<usize>| {
+            let row = self.factor_rows(c, s).0 + i as u32;
+            Some((refer_to(row), self.rebuilt_factor(c, s, i).and_then(|_| self.rebuilt_of(c, s).factor(i))?))
         };
         let annuity_row = at.sums + 3 + shift;
         match role {
-            TargetRole::Factor => factor().map(|(text, value)| Live::number(text, value)),
+            TargetRole::Factor => factor(None).map(|(text, value)| Live::number(text, value)),
+            TargetRole::StreamFactor(name) => {
+                factor(find(choice, name)).map(|(text, value)| Live::number(text, value))
+            }
             TargetRole::Rates => self.rebuilt_rate(c, i),
             TargetRole::PvByYear(name) => {
-                let (factor_cell, d) = factor()?;
-                let (flow, value) = match name {
-                    Some(name) => self.flow(c, find(choice, name)?, i),
-                    None => (absolute_cell(at.years + i as u32, self.net_column(c)), self.net(c, i)?.1),
+                let (flow, value, s) = match name {
+                    Some(name) => {
+                        let s = find(choice, name)?;
+                        let (flow, value) = self.flow(c, s, i);
+                        (flow, value, Some(s))
+                    }
+                    None if choice.streams.iter().any(|stream| stream.basis.is_some()) => {
+                        return self.net_by_streams(c, &factor, i);
+                    }
+                    None => (absolute_cell(at.years + i as u32, self.net_column(c)), self.net(c, i)?.1, None),
                 };
+                let (factor_cell, d) = factor(s)?;
                 Some(Live::number(format!("({flow})*{factor_cell}"), value * d))
             }
             TargetRole::PvTotal(Some(name)) => {
                 let s = find(choice, name)?;
-                let value = self.has_route(c).then(|| self.rebuilt_stream(c, s))??;
+                let value = self.has_route(c, Some(s)).then(|| self.rebuilt_stream(c, s))??;
                 Some(Live::number(refer_to(at.streams + s as u32), value))
             }
             TargetRole::PvTotal(None) => Some(Live::number(refer_to(at.sums + 2), self.rebuilt_sums(c)?[2])),
@@ -105,6 +115,24 @@ impl Maker<'_> {
         }
     }
 
+    /// The present value of a year's net flow, each stream by its own factor.
+    fn net_by_streams(
+        &self,
+        c: usize,
+        factor: &dyn Fn(Option<usize>) -> Option<(String, f64)>,
+        i: usize,
+    ) -> Option<Live> {
+        let (mut text, mut total) = (String::new(), 0.0);
+        for (s, stream) in self.input.appraisal.choices[c].streams.iter().enumerate() {
+            let ((flow, value), (cell, d)) = (self.flow(c, s, i), factor(Some(s))?);
+            text.push_str(if side(stream.kind) < 0.0 { "-" } else { "+" });
+            text.push_str(&format!("({flow})*{cell}"));
+            total += side(stream.kind) * value * d;
+        }
+        let text = text.trim_start_matches('+').to_owned();
+        (text.len() <= MAX_FORMULA).then(|| Live::number(text, total))
+    }
+
     /// The column of net flows, after the streams'.
     pub(super) fn net_column(&self, c: usize) -> u32 {
         col::FLOWS + self.input.appraisal.choices[c].streams.len() as u32
@@ -121,6 +149,10 @@ impl Maker<'_> {
         {
             text.push_str(&more);
             value += residual_sign(stream.kind) * stream.unit * given.value;
+        }
+        if let Some((cell, by)) = self.multiplier(c, s, i) {
+            text = format!("({text})*{cell}");
+            value *= by;
         }
         (text, value)
     }
@@ -202,6 +234,7 @@ impl Maker<'_> {
 pub(crate) fn role_words(role: &TargetRole) -> String {
     match role {
         TargetRole::Factor => "factor".into(),
+        TargetRole::StreamFactor(name) => format!("factor: {name}"),
         TargetRole::PvByYear(None) => "PV by year: net".into(),
         TargetRole::PvByYear(Some(name)) => format!("PV by year: {name}"),
         TargetRole::PvTotal(None) => "PV: net".into(),

@@ -4,6 +4,8 @@
     ask.py SOFFICE PROFILE wizard PREFIX    what the function wizard shows of the functions with a prefix
     ask.py SOFFICE PROFILE long ROWS LINE   factors of a line at 0, 1, 2 and so on in one array formula, and the value of
                                             two whole columns that hold 0 to 499
+    ask.py SOFFICE PROFILE timed CELLS      seconds that CELLS factors take: by a built-in function of two arguments, by
+                                            HENCE.FACTOR in each cell, and by one array formula
 """
 
 import os
@@ -17,6 +19,7 @@ import traceback
 import uno
 from com.sun.star.beans import PropertyValue
 from com.sun.star.connection import NoConnectException
+from com.sun.star.sheet.FillDirection import TO_BOTTOM
 from com.sun.star.sheet.FormulaResult import STRING
 from com.sun.star.table.CellContentType import EMPTY, FORMULA, TEXT
 
@@ -117,11 +120,44 @@ def long(context, rows, line):
     print("column", *one(value), sep="\t")
 
 
+def timed(context, count):
+    count = int(count)
+    for name, formula, whole in (
+        ("POWER", "=POWER($C$1;A{})", False),
+        ("cells", "=HENCE.FACTOR($D$1;A{})", False),
+        ("array", "=HENCE.FACTOR($D$1;A1:A{})", True),
+    ):
+        document = opened(context, "private:factory/scalc")
+        document.enableAutomaticCalculation(False)
+        sheet = document.Sheets.getByIndex(0)
+        offsets = tuple((i % 300 + 1.0,) for i in range(count))
+        sheet.getCellRangeByPosition(0, 0, 0, count - 1).setDataArray(offsets)
+        sheet.getCellByPosition(2, 0).setValue(1 / 1.035)
+        sheet.getCellByPosition(3, 0).setString("3.5%")
+        results = sheet.getCellRangeByPosition(1, 0, 1, count - 1)
+        if whole:
+            results.setArrayFormula(formula.format(count))
+        else:
+            results.getCellByPosition(0, 0).setFormula(formula.format(1))
+            results.fillAuto(TO_BOTTOM, 1)
+        times = []
+        for _ in range(5):
+            start = time.perf_counter()
+            document.calculateAll()
+            times.append(time.perf_counter() - start)
+        # What was timed must have been computed: all three are the same factors, to rounding.
+        for (offset,), (value,) in zip(offsets, results.getDataArray()):
+            if abs(value - 1.035**-offset) > 1e-12:
+                raise ValueError("{}: {} at {}".format(name, value, offset))
+        print(name, min(times), sep="\t")
+        document.close(True)
+
+
 def main():
     soffice, profile, what, *arguments = sys.argv[1:]
     process, context = connect(soffice, profile)
     try:
-        {"cells": cells, "wizard": wizard, "long": long}[what](context, *arguments)
+        {"cells": cells, "wizard": wizard, "long": long, "timed": timed}[what](context, *arguments)
     finally:
         try:
             service(context, "com.sun.star.frame.Desktop").terminate()

@@ -137,6 +137,12 @@ fn what_calc_itself_makes_of_arguments_is_as_documented() {
         // A single blank cell arrives as 0; within a range it stays blank.
         ("=HENCE.FACTOR(\"100%\",R1)", "n", "1.0"),
         ("=HENCE.FACTOR(\"100%\",R1:R2)", "s", ""),
+        ("=HENCE.VALUE(\"100%\",N1:N3,A2:A4,R1)", "n", "9.75"),
+        ("=HENCE.VALUE(\"100%\",N1:N3,A2:A4,,R1)", "e", "#VALUE!"),
+        ("=ROUND(HENCE.IRR(N1:N3,O1:O3,,R1),6)", "e", "#NUM!"),
+        // As an empty text it counts as left out.
+        ("=HENCE.VALUE(\"100%\",N1:N3,A2:A4,,R1&\"\")", "n", "9.75"),
+        ("=ROUND(HENCE.IRR(N1:N3,O1:O3,,IF(R1=\"\",\"\",R1)),6)", "n", "0.1"),
         // TRUE is a number to Calc.
         ("=HENCE.FACTOR(\"100%\",TRUE())", "n", "0.5"),
         // A single error value passes through; a range that holds one is refused as a whole.
@@ -163,6 +169,8 @@ fn what_calc_itself_makes_of_arguments_is_as_documented() {
     for (i, (formula, ..)) in cases.iter().enumerate() {
         lines.push_str(&format!("{}\tf\t{formula}\n", address(FIRST, i + 1)));
     }
+    // In an array formula the error values of a range can be left out.
+    lines.push_str("W1\ta\t=HENCE.FACTOR(\"100%\",IFERROR(S1:S3,\"\"))\tW1:W3\n");
     let (layout, out) = (office.give("layout.txt", lines.as_bytes()), office.give("host.xlsx", b""));
     let Some(_) = books(&[&layout, &out], "write") else { return };
     let sheet = sheets(&office.ask(&["cells", &out.to_string_lossy()])).remove(0);
@@ -178,6 +186,8 @@ fn what_calc_itself_makes_of_arguments_is_as_documented() {
         }
     }
     assert_eq!(wrong, [""; 0]);
+    let cells = ["W1", "W2", "W3"].map(|at| (sheet[at].kind.as_str(), sheet[at].value.as_str()));
+    assert_eq!(cells, [("s", ""), ("s", ""), ("n", "3fa0000000000000")], "1/32 below two blanks");
 }
 
 /// A German profile shows 1,5 and computes the same.

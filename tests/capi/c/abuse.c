@@ -71,6 +71,12 @@ int main(void) {
   REFUSED(hence_basis_parse_at("3.5%", 2026, -1.0, &none, &error), HENCE_ERR_RANGE, 3, -1);
   REFUSED(hence_basis_parse_at("3.5%", 2026, NAN, &none, &error), HENCE_ERR_NOT_FINITE, 3, -1);
   REFUSED(hence_basis_parse_at("3.5%", 2026, 1.0, NULL, &error), HENCE_ERR_NULL, 4, -1);
+  REFUSED(hence_basis_parse_at(NULL, 2026, 1.0, &none, &error), HENCE_ERR_NULL, 1, -1);
+  REFUSED(hence_basis_parse_at("3.5%", 2026, 1.0, (hence_basis **)(void *)odd, &error), HENCE_ERR_ALIGNMENT, 4, -1);
+  REFUSED(hence_basis_parse_at("2.5% to 2070, 1.5% after", 0, 0.0, &none, &error), HENCE_ERR_CONTEXT, 2, -1);
+  REFUSED(hence_basis_parse_at("1% to 5, 3.5% to 2020, 1% after", 2026, 0.0, &none, &error), HENCE_ERR_RANGE, 1, -1);
+  REFUSED(hence_basis_parse_at("3% to 10, 2% to 30; whole horizon by length", 0, 0.0, &none, &error), HENCE_ERR_CONTEXT, 3, -1);
+  REFUSED(hence_basis_parse_at("3% to 10, 2% to 30; whole horizon by length", 0, 31.0, &none, &error), HENCE_ERR_DOMAIN, 3, -1);
   CHECK(none == NULL);
   CHECK(hence_basis_parse_at("2.5% to 2070, 1.5% after", 2026, 0.0, &none, &error) == HENCE_OK);
   hence_basis_free(none);
@@ -82,6 +88,15 @@ int main(void) {
   none = NULL;
   CHECK(hence_basis_parse(long_text, &none, &error) != HENCE_OK && none == NULL);
   free(long_text);
+
+  /* A handle that is not aligned is none. */
+  hence_basis *askew = (hence_basis *)(void *)((char *)basis + 1);
+  REFUSED(hence_factors(askew, t, 3, out, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+  REFUSED(hence_present_value(askew, t, flows, 3, &one, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+  REFUSED(hence_present_values(askew, t, flows, 2, 3, out, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+  REFUSED(hence_annual_equivalent(askew, 1.0, 3, &one, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+  REFUSED(hence_basis_line(askew, text, sizeof text, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+  UNTOUCHED;
 
   /* Texts out. */
   memset(text, 'x', sizeof text);
@@ -145,12 +160,23 @@ int main(void) {
     CHECK(hence_present_value(basis, zero, large, 2, &one, &error) == HENCE_ERR_NOT_FINITE && error.argument == 3);
     CHECK(hence_present_values(basis, zero, large, 1, 2, &one, &error) == HENCE_ERR_NOT_FINITE && error.index == 0);
   }
+  REFUSED(hence_present_value(basis, odd, flows, 3, &one, &error), HENCE_ERR_ALIGNMENT, 2, -1);
+  REFUSED(hence_present_value(basis, t, flows, 3, t + 2, &error), HENCE_ERR_OVERLAP, 5, -1);
+  REFUSED(hence_present_value(basis, t, flows, 3, flows, &error), HENCE_ERR_OVERLAP, 5, -1);
+  CHECK(t[2] == 2.0 && flows[0] == -100.0);
   UNTOUCHED;
   CHECK(hence_present_value(basis, NULL, NULL, 0, &one, &error) == HENCE_OK && one == 0.0);
   one = -7.0;
   REFUSED(hence_present_values(basis, t, flows, 2, 3, NULL, &error), HENCE_ERR_NULL, 6, -1);
   REFUSED(hence_present_values(basis, t, null, 2, 3, out, &error), HENCE_ERR_NULL, 3, -1);
+  REFUSED(hence_present_values(NULL, t, flows, 2, 3, out, &error), HENCE_ERR_NULL, 1, -1);
+  REFUSED(hence_present_values(basis, null, flows, 2, 3, out, &error), HENCE_ERR_NULL, 2, -1);
+  REFUSED(hence_present_values(basis, odd, flows, 2, 3, out, &error), HENCE_ERR_ALIGNMENT, 2, -1);
+  REFUSED(hence_present_values(basis, t, odd, 2, 3, out, &error), HENCE_ERR_ALIGNMENT, 3, -1);
+  REFUSED(hence_present_values(basis, t, flows, 2, 3, odd, &error), HENCE_ERR_ALIGNMENT, 6, -1);
+  REFUSED(hence_present_values(basis, bad, flows, 2, 3, out, &error), HENCE_ERR_NOT_FINITE, 2, 2);
   REFUSED(hence_present_values(basis, t, flows, huge, 3, out, &error), HENCE_ERR_LENGTH, 4, -1);
+  REFUSED(hence_present_values(basis, t, flows, SIZE_MAX, SIZE_MAX, out, &error), HENCE_ERR_LENGTH, 5, -1);
   REFUSED(hence_present_values(basis, t, flows, 2, huge, out, &error), HENCE_ERR_LENGTH, 5, -1);
   REFUSED(hence_present_values(basis, t, flows, 1 << 20, 1 << 20, out, &error), HENCE_ERR_LENGTH, 4, -1);
   REFUSED(hence_present_values(basis, t, flows, 2, 3, flows + 5, &error), HENCE_ERR_OVERLAP, 6, -1);
@@ -170,7 +196,9 @@ int main(void) {
   REFUSED(hence_annual_equivalent(basis, 1.0, -3, &one, &error), HENCE_ERR_NO_MEANING, 3, -1);
   REFUSED(hence_annual_equivalent(basis, 1.0, 100001, &one, &error), HENCE_ERR_NO_MEANING, 3, -1);
   CHECK(hence_annual_equivalent(basis, 1.0, 76, &one, &error) == HENCE_ERR_DOMAIN);
+  REFUSED(hence_annual_equivalent(basis, 1.0, INT32_MIN, &one, &error), HENCE_ERR_NO_MEANING, 3, -1);
   REFUSED(hence_annual_equivalent(basis, 1.0, 3, NULL, &error), HENCE_ERR_NULL, 4, -1);
+  REFUSED(hence_annual_equivalent(basis, 1.0, 3, odd, &error), HENCE_ERR_ALIGNMENT, 4, -1);
   UNTOUCHED;
 
   /* Rates of return: at 10% and 20%. */
@@ -189,6 +217,21 @@ int main(void) {
   REFUSED(hence_irr_all(t, two, 3, -0.5, 1.0, out, 1, &count, &error), HENCE_ERR_CAPACITY, 7, 2);
   REFUSED(hence_irr_all(t, two, 3, -0.5, 1.0, NULL, 0, &count, &error), HENCE_ERR_CAPACITY, 7, 2);
   REFUSED(hence_irr_all(t, two, 3, -0.5, 1.0, t + 1, 2, &count, &error), HENCE_ERR_OVERLAP, 6, -1);
+  REFUSED(hence_irr_all(t, two, 3, -0.5, 1.0, two + 2, 1, &count, &error), HENCE_ERR_OVERLAP, 6, -1);
+  {
+    /* Outputs against each other and against the inputs. */
+    void *places[3] = {t + 2, two, out + 1};
+    for (int i = 0; i < 3; i++) {
+      REFUSED(hence_irr_all(t, two, 3, -0.5, 1.0, out, 3, places[i], &error), HENCE_ERR_OVERLAP, 8, -1);
+    }
+    CHECK(t[2] == 2.0 && two[0] == -100.0);
+  }
+  REFUSED(hence_irr_all(odd, two, 3, -0.5, 1.0, out, 3, &count, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+  REFUSED(hence_irr_all(t, odd, 3, -0.5, 1.0, out, 3, &count, &error), HENCE_ERR_ALIGNMENT, 2, -1);
+  REFUSED(hence_irr_all(t, two, 3, -0.5, 1.0, odd, 3, &count, &error), HENCE_ERR_ALIGNMENT, 6, -1);
+  REFUSED(hence_irr_all(t, two, 3, -0.5, 1.0, out, 3, (void *)odd, &error), HENCE_ERR_ALIGNMENT, 8, -1);
+  REFUSED(hence_irr_all(bad, two, 3, -0.5, 1.0, out, 3, &count, &error), HENCE_ERR_NOT_FINITE, 1, 2);
+  REFUSED(hence_irr_all(t, endless, 3, -0.5, 1.0, out, 3, &count, &error), HENCE_ERR_NOT_FINITE, 2, 0);
   {
     double touching[3] = {100.0, -220.0, 121.0};
     REFUSED(hence_irr_all(t, touching, 3, -0.5, 1.0, out, 3, &count, &error), HENCE_ERR_NO_MEANING, 2, -1);
@@ -209,6 +252,14 @@ int main(void) {
   REFUSED(hence_offsets_from_years(t, 3, 0.0, "flows late", out, &error), HENCE_ERR_SYNTAX, 4, 0);
   REFUSED(hence_offsets_from_years(t, 3, 0.0, "\xff", out, &error), HENCE_ERR_UTF8, 4, 0);
   REFUSED(hence_offsets_from_years(t, 3, 0.0, "flows averaged", out, &error), HENCE_ERR_UNSUPPORTED, 4, -1);
+  REFUSED(hence_offsets_from_years(t, 3, 0.0, "base averaged", out, &error), HENCE_ERR_NO_MEANING, 4, 0);
+  REFUSED(hence_offsets_from_years(odd, 3, 0.0, NULL, out, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+  REFUSED(hence_offsets_from_years(t, huge, 0.0, NULL, out, &error), HENCE_ERR_LENGTH, 2, -1);
+  REFUSED(hence_offsets_from_years(t, 3, 0.0, NULL, odd, &error), HENCE_ERR_ALIGNMENT, 5, -1);
+  {
+    double far[2] = {0.0, 1.7e308};
+    REFUSED(hence_offsets_from_years(far, 2, -1.7e308, NULL, out, &error), HENCE_ERR_NOT_FINITE, 1, 1);
+  }
   REFUSED(hence_offsets_from_years(t, 3, 0.0, NULL, NULL, &error), HENCE_ERR_NULL, 5, -1);
   REFUSED(hence_offsets_from_years(t, 3, 0.0, NULL, t, &error), HENCE_ERR_OVERLAP, 5, -1);
   int32_t dates[3] = {20260401, 20270401, 20270230};
@@ -216,6 +267,18 @@ int main(void) {
   REFUSED(hence_offsets_from_dates(dates, 3, 20260401, NULL, out, &error), HENCE_ERR_SYNTAX, 1, 2);
   REFUSED(hence_offsets_from_dates(dates, 2, 2026, NULL, out, &error), HENCE_ERR_SYNTAX, 3, -1);
   CHECK(hence_offsets_from_dates(dates, 2, 20260401, "lunar", out, &error) == HENCE_ERR_SYNTAX && error.argument == 4);
+  REFUSED(hence_offsets_from_dates((int32_t *)(void *)odd, 2, 20260401, NULL, out, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+  REFUSED(hence_offsets_from_dates(dates, huge, 20260401, NULL, out, &error), HENCE_ERR_LENGTH, 2, -1);
+  REFUSED(hence_offsets_from_dates(dates, 2, 20260401, "\xff", out, &error), HENCE_ERR_UTF8, 4, 0);
+  REFUSED(hence_offsets_from_dates(dates, 2, 20260401, NULL, odd, &error), HENCE_ERR_ALIGNMENT, 5, -1);
+  {
+    union {
+      int32_t in[6];
+      double out[3];
+    } shared = {{20260401, 20270401, 0, 0, 0, 0}};
+    REFUSED(hence_offsets_from_dates(shared.in, 2, 20260401, NULL, shared.out, &error), HENCE_ERR_OVERLAP, 5, -1);
+    CHECK(shared.in[0] == 20260401 && shared.in[1] == 20270401);
+  }
   REFUSED(hence_offsets_from_dates(dates, 2, 20260401, NULL, NULL, &error), HENCE_ERR_NULL, 5, -1);
   UNTOUCHED;
   CHECK(hence_offsets_from_dates(dates, 2, 20260401, NULL, out, &error) == HENCE_OK && out[0] == 0.0 && out[1] == 1.0);
@@ -249,6 +312,12 @@ int main(void) {
   REFUSED(hence_worksheet_call("FACTOR", NULL, 2, &answer, &error), HENCE_ERR_NULL, 2, -1);
   REFUSED(hence_worksheet_call("FACTOR", given, huge, &answer, &error), HENCE_ERR_LENGTH, 3, -1);
   REFUSED(hence_worksheet_call("FACTOR", given, 2, NULL, &error), HENCE_ERR_NULL, 4, -1);
+  REFUSED(hence_worksheet_call("FACTOR", (void *)odd, 2, &answer, &error), HENCE_ERR_ALIGNMENT, 2, -1);
+  REFUSED(hence_worksheet_call("FACTOR", given, 2, (void *)odd, &error), HENCE_ERR_ALIGNMENT, 4, -1);
+  REFUSED(hence_worksheet_call("\xff", given, 2, &answer, &error), HENCE_ERR_UTF8, 1, 0);
+  given[1] = (void *)odd;
+  REFUSED(hence_worksheet_call("FACTOR", given, 2, &answer, &error), HENCE_ERR_ALIGNMENT, 2, 1);
+  given[1] = &cell;
   cell.struct_size = 8;
   REFUSED(hence_worksheet_call("FACTOR", given, 2, &answer, &error), HENCE_ERR_RANGE, 2, 0);
   cell.struct_size = sizeof cell;
@@ -285,6 +354,15 @@ int main(void) {
   REFUSED(hence_answer_shape(NULL, &rows, &columns, &error), HENCE_ERR_NULL, 1, -1);
   REFUSED(hence_answer_shape(answer, NULL, &columns, &error), HENCE_ERR_NULL, 2, -1);
   REFUSED(hence_answer_shape(answer, &rows, NULL, &error), HENCE_ERR_NULL, 3, -1);
+  hence_answer *tilted = (hence_answer *)(void *)((char *)answer + 1);
+  REFUSED(hence_answer_shape(tilted, &rows, &columns, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+  REFUSED(hence_answer_shape(answer, &rows, &rows, &error), HENCE_ERR_OVERLAP, 3, -1);
+  REFUSED(hence_answer_cells(NULL, &found, &kind, 1, &error), HENCE_ERR_NULL, 1, -1);
+  REFUSED(hence_answer_cells(answer, &found, (uint8_t *)&found, 1, &error), HENCE_ERR_OVERLAP, 3, -1);
+  REFUSED(hence_answer_cells(answer, odd, &kind, 1, &error), HENCE_ERR_ALIGNMENT, 2, -1);
+  REFUSED(hence_answer_text(NULL, 0, text, sizeof text, &error), HENCE_ERR_NULL, 1, -1);
+  REFUSED(hence_answer_text(answer, 0, NULL, sizeof text, &error), HENCE_ERR_NULL, 3, -1);
+  CHECK(rows == 1 && columns == 1 && found == 3.0 && kind == HENCE_CELL_ERROR);
   REFUSED(hence_answer_cells(answer, &found, &kind, 2, &error), HENCE_ERR_CAPACITY, 4, 1);
   REFUSED(hence_answer_cells(answer, NULL, &kind, 1, &error), HENCE_ERR_NULL, 2, -1);
   REFUSED(hence_answer_cells(answer, &found, NULL, 1, &error), HENCE_ERR_NULL, 3, -1);

@@ -39,6 +39,10 @@ pub struct Case {
     pub past: u32,
     /// Signs, units, uplift, residual and tail.
     pub settings: bool,
+    /// What the prices are, and by what flows are multiplied, in words: `inflation`, `index`, `growth`.
+    pub prices: (&'static str, &'static str),
+    /// A basis of two streams' own, and whether the factors of one are filled.
+    pub own: (&'static str, bool),
 }
 
 const YEARS: u32 = 40;
@@ -48,10 +52,16 @@ const YEARS: u32 = 40;
 pub const CASES: &[Case] = {
     use Labels::*;
     const fn case(basis: &'static str, timing: &'static str, labels: Labels, across: bool, factors: bool) -> Case {
-        Case { basis, timing, labels, across, factors, past: 0, settings: false }
+        Case { basis, timing, labels, across, factors, past: 0, settings: false, prices: ("", ""), own: ("", false) }
     }
     const fn with(case: Case, past: u32, settings: bool) -> Case {
         Case { past, settings, ..case }
+    }
+    const fn priced(case: Case, basis: &'static str, by: &'static str) -> Case {
+        Case { prices: (basis, by), ..case }
+    }
+    const fn own(case: Case, basis: &'static str, factors: bool) -> Case {
+        Case { own: (basis, factors), ..case }
     }
     const BANDS: &str = "3.5% to 30, 3% to 75, 2.5% after";
     &[
@@ -89,12 +99,28 @@ pub const CASES: &[Case] = {
         case("gamma mean 4% sd 3%", "flows averaged", Offsets, true, false),
         case("0.5 of (1%), 0.5 of (7% continuous)", "flows averaged", Calendar, false, false),
         with(case("0.25 of (3% to 10, 2% after), 0.75 of (gamma mean 4% sd 2%)", "flows middle", Slash, true, true), 0, true),
+        // Streams on a basis of their own.
+        own(with(case("3.5%", "flows end", Calendar, true, true), 2, true), "1.5% to 30, 1% after", true),
+        own(with(case(BANDS, "flows averaged", Slash, false, false), 0, true), "2% continuous", false),
+        own(case("gamma mean 4% sd 3%", "flows middle", Numbers, true, false), "0.5 of (1%), 0.5 of (3%)", true),
+        own(priced(with(case("4%", "flows end", Dates, false, true), 0, true), "nominal", "inflation, growth"), "1%", false),
+        own(case("3% to 10.5, 2% after", "flows end", Calendar, true, true), "1%", true),
+        own(case("3%", "flows end", Calendar, true, false), "2% to 7.5, 1% after", true),
         // Without a second route: an edge within a year, and a table of factors.
         case("3% to 10.5, 2% after", "flows end", Calendar, true, true),
         case("factors-2026", "flows end", Numbers, false, true),
         // Schedules, one with a companion beyond 50 years that is not reached here.
         case("uk-2003", "flows end", Fy, true, true),
         case("uk-2018", "flows middle", Calendar, false, true),
+        // Money of the day made real, and prices that grow against others.
+        priced(with(case("3.5%", "flows end", Calendar, true, true), 4, true), "real 2030", "inflation, growth"),
+        priced(with(case(BANDS, "flows middle", Slash, false, false), 0, true), "nominal to real 2008/09", "inflation"),
+        priced(with(case("4%", "flows averaged", Calendar, true, false), 3, false), "real 2026", "index"),
+        priced(case("uk-2003", "flows end", Fy, false, true), "real FY12", "index, growth"),
+        priced(case("3%", "flows end", Dates, true, true), "nominal", "inflation, growth"),
+        priced(case("gamma mean 4% sd 3%", "flows end", Numbers, false, false), "real 2022", "inflation"),
+        priced(case("3% continuous", "flows end", Offsets, true, true), "real 2022", "growth"),
+        priced(with(case("3%", "flows middle", Numbers, true, true), 0, true), "real", "growth"),
     ]
 };
 
@@ -129,6 +155,16 @@ impl Case {
     /// The i-th cell of the first stream of costs.
     pub fn flow(&self, i: u32) -> String {
         self.at(1, i).to_string()
+    }
+
+    /// The i-th level of prices.
+    pub fn level(&self, i: u32) -> String {
+        self.at(9, i).to_string()
+    }
+
+    /// The i-th factor of a stream on its own basis.
+    pub fn own_factor(&self, i: u32) -> String {
+        self.at(10, i).to_string()
     }
 
     fn values(&self, line: u32, value: impl Fn(u32) -> String) -> String {
@@ -185,6 +221,29 @@ impl Case {
                       A8: 'Tail | 'to 60\nA9: 'Site | 75\n";
             names += ", hence_signs B4, hence_unit_works B5, hence_uplift_works B6, hence_residual_works B7, \
                       hence_tail_running B8, hence_residual_access B9";
+        }
+        let (prices, by) = self.prices;
+        if !prices.is_empty() {
+            cells += &format!("A10: 'Prices | '{prices}\nA11: 'Inflation | 0.025\nA12: 'Growth | 0.012\n");
+            names += ", hence_price_basis B10";
+        }
+        let (own, own_factors) = self.own;
+        if !own.is_empty() {
+            cells += &format!("D10: 'Own basis | '{own}\n");
+            names += ", hence_basis_access E10, hence_basis_running E10";
+        }
+        if own_factors {
+            names += &format!(", hence_factor_access {}", self.range(10));
+        }
+        if by.contains("growth") {
+            names += ", hence_growth_access B12, hence_growth_running B12";
+        }
+        if by.contains("inflation") {
+            names += ", hence_prices B11";
+        }
+        if by.contains("index") {
+            cells += &self.values(9, |i| format!("{}", 80.0 + 2.0 * f64::from(i) + f64::from(i % 3)));
+            names += &format!(", hence_prices {}", self.range(9));
         }
         cells += &self.values(0, |i| self.written(i));
         cells += &self.values(1, |i| if i < 4 { format!("{sign}{}", 1000 - 100 * i) } else { String::new() });

@@ -1,0 +1,153 @@
+//! What multiplies flows year by year, by a second route: from the analyst's own years, index and rates.
+
+use chrono::Datelike;
+
+use super::checks::{Maker, absolute_cell, label_live, place};
+use super::lines::{Line, Live, col};
+use super::rebuild::{base_year, constant};
+use crate::appraisal::{Base, Choice, Label, Levels, Stream};
+use crate::formulas::{nth, refer, refer_cell};
+
+impl Maker<'_> {
+    /// The series that an option's streams use, in the order of its streams.
+    pub(super) fn series_in(&self, c: usize) -> Vec<usize> {
+        let mut all = Vec::new();
+        for s in 0..self.input.appraisal.choices[c].streams.len() {
+            if let Some(series) = self.layout.series_of(c, s).filter(|series| !all.contains(series)) {
+                all.push(series);
+            }
+        }
+        all
+    }
+
+    /// The multiplier of a stream's flow: its cell by the second route, and its value; none where there is none.
+    pub(super) fn multiplier(&self, c: usize, s: usize, i: usize) -> Option<(String, f64)> {
+        let (first, _) = self.multiplier_rows(c, s)?;
+        let cell = absolute_cell(first + i as u32, col::REBUILT);
+        Some((cell, self.rebuilt_multiplier(c, s, i)))
+    }
+
+    /// The first and last row of a stream's multipliers.
+    pub(super) fn multiplier_rows(&self, c: usize, s: usize) -> Option<(u32, u32)> {
+        let series = self.layout.series_of(c, s)?;
+        let position = self.series_in(c).iter().position(|k| *k == series)? as u32;
+        let years = self.layout.block(c).rows;
+        let first = self.sections[c].multipliers + position * years;
+        Some((first, first + years - 1))
+    }
+
+    /// A line for each year of each series.
+    pub(super) fn multiplier_lines(&self, c: usize, lines: &mut Vec<(u32, Line)>) {
+        let years = self.layout.block(c).rows;
+        for (position, k) in self.series_in(c).into_iter().enumerate() {
+            let users = &self.layout.series[k].users;
+            let Some(&(_, s)) = users.iter().find(|(choice, _)| *choice == c) else { continue };
+            for i in 0..years {
+                let row = self.sections[c].multipliers + position as u32 * years + i;
+                lines.push((row, self.multiplier_line(c, s, i as usize, row)));
+            }
+        }
+    }
+
+    fn multiplier_line(&self, c: usize, s: usize, i: usize, row: u32) -> Line {
+        let choice = &self.input.appraisal.choices[c];
+        let stream = &choice.streams[s];
+        let axis = &self.input.appraisal.axes[choice.axis];
+        let label = &axis.labels[i];
+        let (value, style) = label_live(label, self.input.appraisal.date1904);
+        let source = refer_cell(self.home, &axis.at.sheet, nth(axis.at.range, i));
+        let cells = self.layout.multipliers(c, s).unwrap_or_else(|| axis.at.clone());
+        let cell = nth(cells.range, i);
+        let mut line = Line::factor(place(&cells.sheet, cell), Live { formula: source, value }, style);
+        let years = years_formula(&absolute_cell(row, col::WHAT), label, choice, self.home);
+        line.offset = Some(Live::number(years, price_years(label, choice)));
+        let text =
+            formula(stream, choice, i, self.price_base(c), &absolute_cell(row, col::OFFSET), self.home);
+        line.rebuilt = Some(Live::number(text, self.rebuilt_multiplier(c, s, i)));
+        let recorded = self.input.outcomes[c].streams[s].multipliers.as_ref().map_or(1.0, |all| all[i]);
+        line.recorded = Live::number(refer_cell(self.home, &cells.sheet, cell), recorded);
+        line
+    }
+
+    /// The place among the years of the price base.
+    fn price_base(&self, c: usize) -> usize {
+        let choice = &self.input.appraisal.choices[c];
+        let labels = &self.input.appraisal.axes[choice.axis].labels;
+        labels.iter().position(|label| price_years(label, choice) == 0.0).unwrap_or(0)
+    }
+
+    fn rebuilt_multiplier(&self, c: usize, s: usize, i: usize) -> f64 {
+        let choice = &self.input.appraisal.choices[c];
+        let n = price_years(&self.input.appraisal.axes[choice.axis].labels[i], choice);
+        let deflator = match choice.prices.levels.as_ref().map(|given| &given.value) {
+            None => 1.0,
+            Some(Levels::Inflation(rate)) => 1.0 / (1.0 + rate).powf(n),
+            Some(Levels::Index(levels)) => levels[self.price_base(c)] / levels[i],
+        };
+        let growth = choice.streams[s].growth.as_ref().map_or(0.0, |given| given.value);
+        deflator * (1.0 + growth).powf(n)
+    }
+}
+
+/// The multiplier from the cells that it is made of; `n` holds the years from the price base.
+fn formula(stream: &Stream, choice: &Choice, i: usize, base: usize, n: &str, home: &str) -> String {
+    let mut parts = Vec::new();
+    if let Some(given) = &choice.prices.levels {
+        parts.push(match (&given.value, &given.at) {
+            (Levels::Inflation(rate), at) => {
+                let rate = at.as_ref().map_or_else(|| constant(*rate), |at| refer(home, at));
+                format!("(1+{rate})^(-{n})")
+            }
+            (Levels::Index(_), Some(at)) => {
+                let level = |i| refer_cell(home, &at.sheet, nth(at.range, i));
+                format!("{}/{}", level(base), level(i))
+            }
+            (Levels::Index(levels), None) => format!("{}/{}", constant(levels[base]), constant(levels[i])),
+        });
+    }
+    if let Some(given) = &stream.growth {
+        let growth = given.at.as_ref().map_or_else(|| constant(given.value), |at| refer(home, at));
+        parts.push(format!("(1+{growth})^{n}"));
+    }
+    parts.join("*")
+}
+
+/// Years from the price base to a label.
+fn price_years(label: &Label, choice: &Choice) -> f64 {
+    let base = base_year(&choice.base.value);
+    let from = f64::from(choice.prices.year().or(base).unwrap_or(0));
+    match label {
+        Label::Year(year) | Label::Financial(year, _) => f64::from(*year) - from,
+        Label::Date(date) => f64::from(date.year()) - from,
+        Label::Number(n) => f64::from(*n) + f64::from(base.unwrap_or(0)) - from,
+        Label::Offset(t) => t + f64::from(base.unwrap_or(0)) - from,
+    }
+}
+
+/// The same from the label's cell and, where no price year is stated, the base's.
+fn years_formula(label_cell: &str, label: &Label, choice: &Choice, home: &str) -> String {
+    let stated = choice.prices.year();
+    let base_cell = choice.base.at.as_ref().map(|at| refer(home, at));
+    let base = base_year(&choice.base.value).unwrap_or(0);
+    let from = match (stated, &choice.base.value, base_cell) {
+        (Some(year), ..) => year.to_string(),
+        (None, Base::Year(_), Some(cell)) => cell,
+        (None, Base::Date(_), Some(cell)) => format!("YEAR({cell})"),
+        (None, ..) => base.to_string(),
+    };
+    match label {
+        Label::Year(_) => format!("{label_cell}-{from}"),
+        Label::Date(_) => format!("YEAR({label_cell})-{from}"),
+        Label::Financial(year, text) if text.starts_with(&year.to_string()) => {
+            format!("VALUE(LEFT({label_cell},4))-{from}")
+        }
+        // The text is compared, so that the constant counts only while the label stands.
+        Label::Financial(year, text) => {
+            format!("IF({label_cell}=\"{}\",{year},NA())-{from}", text.replace('"', "\"\""))
+        }
+        Label::Number(_) | Label::Offset(_) => match stated {
+            None => label_cell.to_owned(),
+            Some(year) => format!("{label_cell}-{}", constant(f64::from(year - base))),
+        },
+    }
+}
