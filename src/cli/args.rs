@@ -428,7 +428,7 @@ pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
             }
         }
         let mut named = OsString::new();
-        if against && book && command.as_deref() == Some("compare") {
+        if against && book && matches!(command.as_deref(), Some("compare" | "brief")) {
             named.push(format!("{SEVERAL}="));
             named.push(arg);
             prepared.push(named);
@@ -512,6 +512,10 @@ mod tests {
         assert_eq!(
             after(&["compare", "--against", "3%", "a.xlsx"]),
             ["compare", "--against", "3%", "a.xlsx"]
+        );
+        assert_eq!(
+            after(&["brief", "a.xlsx", "--against", "3%", "4%", "--out", "b.md"]),
+            ["brief", "a.xlsx", "--against", "3%", "--against=4%", "--out", "b.md"]
         );
         assert_eq!(after(&["fill", "--by", "x", "-2.xlsx"]), ["fill", "--by", "x", "./-2.xlsx"]);
     }
