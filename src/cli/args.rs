@@ -48,6 +48,8 @@ pub enum Command {
     Check(Check),
     /// Compare the options under several bases, and find where the decision switches
     Compare(Compare),
+    /// Write one page for those who decide: question, options, basis, answer, what would change it
+    Brief(Brief),
     /// Print the factors and rates of a curve
     Curve(Curve),
     /// Draw the rate from distributions, and print how the net present values spread
@@ -149,6 +151,37 @@ pub struct Compare {
     /// Comma-separated values
     #[arg(long, conflicts_with = "json")]
     pub csv: bool,
+    /// Print one JSON document
+    #[arg(long)]
+    pub json: bool,
+    /// Replace an existing output
+    #[arg(long)]
+    pub force: bool,
+}
+
+#[derive(Debug, Args)]
+pub struct Brief {
+    /// The workbook; - reads it from standard input
+    #[arg(value_name = "BOOK")]
+    pub book: PathBuf,
+    /// The page to write: .html, or .md for Markdown; - for HTML on standard output
+    #[arg(long, value_name = "FILE")]
+    pub out: PathBuf,
+    /// The question on the page; else the workbook's title, else one made from the names of the options
+    #[arg(long, value_name = "TEXT")]
+    pub question: Option<String>,
+    /// Rate lines or schedules to hold the result against; several may follow
+    #[arg(long, value_name = "LINE|ID")]
+    pub against: Vec<String>,
+    /// Give a role to cells without a defined name
+    #[arg(long = "role", value_name = "ROLE=RANGE")]
+    pub roles: Vec<String>,
+    /// A text for the foot of the page: the date or state of the data
+    #[arg(long, value_name = "TEXT")]
+    pub as_of: Option<String>,
+    /// A text for the foot of the page: who ran it
+    #[arg(long, value_name = "TEXT")]
+    pub by: Option<String>,
     /// Print one JSON document
     #[arg(long)]
     pub json: bool,
@@ -395,7 +428,7 @@ pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
             }
         }
         let mut named = OsString::new();
-        if against && book && command.as_deref() == Some("compare") {
+        if against && book && matches!(command.as_deref(), Some("compare" | "brief")) {
             named.push(format!("{SEVERAL}="));
             named.push(arg);
             prepared.push(named);
@@ -479,6 +512,10 @@ mod tests {
         assert_eq!(
             after(&["compare", "--against", "3%", "a.xlsx"]),
             ["compare", "--against", "3%", "a.xlsx"]
+        );
+        assert_eq!(
+            after(&["brief", "a.xlsx", "--against", "3%", "4%", "--out", "b.md"]),
+            ["brief", "a.xlsx", "--against", "3%", "--against=4%", "--out", "b.md"]
         );
         assert_eq!(after(&["fill", "--by", "x", "-2.xlsx"]), ["fill", "--by", "x", "./-2.xlsx"]);
     }

@@ -90,6 +90,7 @@ fn run(cli: &Cli, terminal: &Terminal) -> Result<Outcome, Failure> {
         Command::Fill(fill) => commands::fill::run(fill, &cli.schedules, terminal),
         Command::Check(check) => commands::check::run(check, &cli.schedules, terminal),
         Command::Compare(compare) => commands::compare::run(compare, &cli.schedules, terminal),
+        Command::Brief(brief) => commands::brief::run(brief, &cli.schedules, terminal),
         Command::Curve(curve) => commands::curve::run(curve, &cli.schedules, terminal),
         Command::Draws(draws) => commands::draws::run(draws, &cli.schedules, terminal),
         Command::Rate(rate) => commands::rate::run(rate, terminal),

@@ -6,7 +6,7 @@ use std::path::Path;
 use hence_core::{Basis, Catalogue, Compounding, Spec};
 use sha2::{Digest, Sha256};
 
-use crate::appraisal::{Appraisal, Given, Setting, Stated};
+use crate::appraisal::{Appraisal, Covered, Given, Setting, Stated};
 use crate::companions::companions;
 use crate::compare::sensitivity;
 use crate::follow;
@@ -222,16 +222,20 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     Ok(Filled { bytes, report })
 }
 
-/// Rows of numbers along the years that no role names: heading and cells.
-pub(crate) fn not_valued(appraisal: &Appraisal) -> Vec<String> {
-    let rows = appraisal.coverage.iter().filter(|row| row.roles.is_empty() && !row.follows);
-    rows.map(|row| match row.heading.as_str() {
-        "" => row.at.to_string(),
-        heading => format!("{heading} ({})", row.at),
-    })
-    .collect()
+/// Rows of numbers along the years that no role names.
+pub(crate) fn rows_not_valued(appraisal: &Appraisal) -> impl Iterator<Item = &Covered> {
+    appraisal.coverage.iter().filter(|row| row.roles.is_empty() && !row.follows)
 }
 
+/// The same in words: heading and cells.
+pub(crate) fn not_valued(appraisal: &Appraisal) -> Vec<String> {
+    rows_not_valued(appraisal)
+        .map(|row| match row.heading.as_str() {
+            "" => row.at.to_string(),
+            heading => format!("{heading} ({})", row.at),
+        })
+        .collect()
+}
 /// The sheets with what is written into them.
 fn patch(
     changes: &mut Changes,

@@ -1,6 +1,7 @@
 //! The command line as a user meets it: a spawned program, its streams and its exit status.
 
 mod books;
+mod brief;
 mod check;
 mod compare;
 mod curve;

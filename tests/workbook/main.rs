@@ -1,6 +1,7 @@
 //! The workbook crate from outside: real, small and hostile workbooks.
 
 mod bare;
+mod brief;
 mod codes;
 mod corpus;
 mod draws;

@@ -1,5 +1,6 @@
 //! One module a command.
 
+pub mod brief;
 pub mod check;
 pub mod compare;
 pub mod curve;

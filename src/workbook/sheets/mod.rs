@@ -36,6 +36,8 @@ use crate::references::{Cell, SheetRange};
 use crate::report::Companion;
 use crate::writer::{self, Content, Sheet, Style};
 
+pub(crate) use adjustments::adjusted;
+pub(crate) use charts::era_words;
 pub use own::{DIGEST, OWN, VERDICT};
 pub use summary::VERDICT_AGREES;
 pub(crate) use targets::role_words;
