@@ -23,7 +23,7 @@ pub enum ErrorKind {
     UnknownSchedule,
     /// A schedule file is not valid.
     BadSchedule,
-    /// Mixture weights do not sum to 1, or one of them is negative.
+    /// Weights of a mixture, or chances, do not sum to 1, or one of them is negative.
     Weights,
     /// Band edges are not increasing, overlap or are missing.
     Edges,
@@ -102,6 +102,13 @@ impl Error {
     #[must_use]
     pub fn with_hint(mut self, hint: impl Into<String>) -> Self {
         self.0.hint = Some(hint.into());
+        self
+    }
+
+    /// The same error about another argument, as the caller names it.
+    #[must_use]
+    pub(crate) fn about(mut self, argument: &'static str) -> Self {
+        self.0.argument = argument;
         self
     }
 

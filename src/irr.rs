@@ -1,6 +1,7 @@
 //! Every internal rate of return in an interval, or the proof that there is none.
 
 use crate::dd::{Dd, exp2_m1, log2_1p, two_diff, two_sum};
+use crate::roots::{AtMost, Crossing, crossings};
 use crate::{Error, ErrorKind, ExactSum, Result, check, sum};
 
 /// The interval searched unless another is stated: -50% to 100%.
@@ -67,21 +68,9 @@ pub fn internal_rates(offsets: &[f64], flows: &[f64], interval: (f64, f64)) -> R
 
     let stream = Stream::new(offsets, flows)?;
     let mut found = IrrSearch { rates: Vec::new(), unresolved: Vec::new(), interval };
-    let changes = stream.sign_changes();
-    if changes == 0 {
-        return Ok(found);
+    if stream.sign_changes > 0 {
+        (found.rates, found.unresolved) = crossings(&stream, interval);
     }
-    let (Some(first), Some(last)) = (stream.end(low, -1.0), stream.end(high, 1.0)) else {
-        found.unresolved.push(interval);
-        return Ok(found);
-    };
-    let (brackets, unresolved) = stream.isolate(first, last, changes == 1);
-    let slack = |rate: f64| 2.0 * AT_AN_END * (1.0 + rate);
-    let rates = brackets.into_iter().map(|(a, b)| stream.bisect(a, b));
-    let inside = rates.filter(|rate| (low - slack(low)..=high + slack(high)).contains(rate));
-    found.rates = inside.map(|rate| rate.clamp(low, high)).collect();
-    let cut = unresolved.into_iter().map(|(a, b)| (a.max(low), b.min(high)));
-    found.unresolved = cut.filter(|(a, b)| a <= b).collect();
     Ok(found)
 }
 
@@ -89,26 +78,12 @@ pub fn internal_rates(offsets: &[f64], flows: &[f64], interval: (f64, f64)) -> R
 struct Stream {
     /// (t, c), t rising and each once, no c zero, the largest near 1.
     terms: Vec<(f64, f64)>,
+    /// How often the terms change their sign.
+    sign_changes: usize,
 }
-
-/// A rate at which the sign of the net present value is certain.
-#[derive(Clone, Copy)]
-struct Signed {
-    rate: f64,
-    positive: bool,
-}
-
-/// Pieces between two rates, rising: those with one root each, and those not settled.
-type Isolated = (Vec<(Signed, Signed)>, Vec<(f64, f64)>);
-
-/// So near to an end of the interval, relative to 1 + r, a root counts as lying on it: the flows are rounded, too.
-const AT_AN_END: f64 = 1e-13;
 
 /// Terms of the Taylor expansion.
 const TERMS: usize = 9;
-
-/// The most pieces looked at; what is left then is unresolved.
-const PIECES: usize = 100_000;
 
 /// The longest step between offsets that is taken by multiplication.
 const LONGEST_STEP: f64 = 16.0;
@@ -137,11 +112,8 @@ impl Stream {
             };
             return Err(Error::new(ErrorKind::NoMeaning, "flows", message).with_hint("flows other than 0"));
         }
-        Ok(Stream { terms })
-    }
-
-    fn sign_changes(&self) -> usize {
-        self.terms.windows(2).filter(|pair| (pair[0].1 > 0.0) != (pair[1].1 > 0.0)).count()
+        let sign_changes = terms.windows(2).filter(|pair| (pair[0].1 > 0.0) != (pair[1].1 > 0.0)).count();
+        Ok(Stream { terms, sign_changes })
     }
 
     /// The net present value around a rate r, divided by a common factor: sum of w exp(-tau v) where
@@ -169,76 +141,38 @@ impl Stream {
         });
         Around { terms: terms.collect() }
     }
+}
 
-    /// The sign at a rate, where rounding cannot have changed it.
-    fn sign(&self, rate: f64) -> Option<Signed> {
+impl Crossing for Stream {
+    fn value(&self, rate: f64) -> (f64, f64) {
         let around = self.around(rate);
-        let (value, error) = (around.value(), around.error());
-        (value.abs() > error).then_some(Signed { rate, positive: value > 0.0 })
+        (around.value(), around.error())
     }
 
-    /// An end of the search, a little outside the interval so that a root on its end is seen.
-    fn end(&self, rate: f64, outwards: f64) -> Option<Signed> {
-        let steps = (0..30).map(|k| AT_AN_END * 2f64.powi(k));
-        steps.map(|step| rate + outwards * step * (1.0 + rate)).find_map(|rate| self.sign(rate))
-    }
-
-    /// A point inside (a, b) whose sign is certain, the middle if possible.
-    fn split(&self, a: f64, b: f64) -> Option<Signed> {
-        let parts = [0.5, 0.47, 0.53, 0.42, 0.58, 0.35, 0.65, 0.27, 0.73, 0.18, 0.82, 0.08, 0.92, 0.02, 0.98];
-        let points = parts.iter().map(|part| a + part * (b - a));
-        points.filter(|&rate| rate > a && rate < b).find_map(|rate| self.sign(rate))
-    }
-
-    fn isolate(&self, first: Signed, last: Signed, one_at_most: bool) -> Isolated {
-        let (mut brackets, mut unresolved) = (Vec::new(), Vec::<(f64, f64)>::new());
-        let mut pieces = vec![(first, last)];
-        let mut seen = 0;
-        while let Some((a, b)) = pieces.pop() {
-            seen += 1;
-            let middle = a.rate + 0.5 * (b.rate - a.rate);
-            let around = self.around(middle);
-            let expansion = around.expansion();
-            // The lower half is the longer one in ln(1 + rate).
-            let half_width =
-                -((a.rate - middle) / (1.0 + middle)).ln_1p() * (1.0 + 1e-12) + f64::MIN_POSITIVE;
-            if one_at_most || around.keeps_sign(&expansion, 1, half_width) {
-                if a.positive != b.positive {
-                    brackets.push((a, b));
-                }
-                continue;
-            }
-            if around.keeps_sign(&expansion, 0, half_width) {
-                continue;
-            }
-            let point = if seen < PIECES { self.split(a.rate, b.rate) } else { None };
-            match (point, unresolved.last_mut()) {
-                (Some(point), _) => pieces.extend([(point, b), (a, point)]),
-                (None, Some(before)) if before.1 == a.rate => before.1 = b.rate,
-                (None, _) => unresolved.push((a.rate, b.rate)),
-            }
+    fn at_most(&self, low: f64, high: f64) -> AtMost {
+        if self.sign_changes == 1 {
+            return AtMost::One;
         }
-        (brackets, unresolved)
+        let middle = low + 0.5 * (high - low);
+        let around = self.around(middle);
+        let expansion = around.expansion();
+        // The lower half is the longer one in ln(1 + rate).
+        let half_width = -((low - middle) / (1.0 + middle)).ln_1p() * (1.0 + 1e-12) + f64::MIN_POSITIVE;
+        if around.keeps_sign(&expansion, 1, half_width) {
+            AtMost::One
+        } else if around.keeps_sign(&expansion, 0, half_width) {
+            AtMost::None
+        } else {
+            AtMost::Several
+        }
     }
 
-    /// The root between two points of different sign, to neighbouring numbers.
-    fn bisect(&self, a: Signed, b: Signed) -> f64 {
-        let (mut low, mut high) = (a.rate, b.rate);
-        while high - low > 1e-25 {
-            // Zero first, as numbers lie too densely around it to be halved down to it.
-            let middle = if low < 0.0 && high > 0.0 { 0.0 } else { low + 0.5 * (high - low) };
-            if middle <= low || middle >= high {
-                break;
-            }
-            let value = self.around(middle).value();
-            if value == 0.0 {
-                return middle;
-            }
-            if (value > 0.0) == a.positive { low = middle } else { high = middle }
-        }
-        let size = |rate: f64| self.around(rate).value().abs();
-        if size(low) <= size(high) { low } else { high }
+    fn size(&self, rate: f64) -> f64 {
+        1.0 + rate
     }
+
+    // Neighbouring numbers are told apart.
+    const FINEST: f64 = 0.0;
 }
 
 /// Powers of 1 + r.

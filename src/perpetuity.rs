@@ -184,6 +184,11 @@ fn last_rate(parts: &Parts) -> Result<(f64, f64)> {
             let (edge, growth) = after(edges, growth, *open)?;
             Ok((edge, rho.ln_1p() + elasticity * growth))
         }
+        Parts::PersistentGrowth { .. } | Parts::GrowthRegimes { .. } => {
+            let message = "under growth that persists or switches no year's rate is the last, so a tail is not \
+                           summed for ever";
+            Err(Error::new(ErrorKind::Unsupported, "tail", message).with_hint("a tail that ends: to 2300"))
+        }
         Parts::Table(_) => Err(ends()),
         Parts::Gamma { .. } | Parts::Mixture(_) => unreachable!("summed by their own formulas"),
     }
@@ -216,7 +221,11 @@ fn log_factor(parts: &Parts, t: f64) -> f64 {
             };
             -t * rate.ln_1p()
         }
-        Parts::Gamma { .. } | Parts::Mixture(_) | Parts::Table(_) => unreachable!("no last rate"),
+        Parts::Gamma { .. }
+        | Parts::Mixture(_)
+        | Parts::Table(_)
+        | Parts::PersistentGrowth { .. }
+        | Parts::GrowthRegimes { .. } => unreachable!("no last rate"),
     }
 }
 

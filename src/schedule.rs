@@ -1,6 +1,9 @@
 //! Named bases with their published source, one TOML text each.
+mod growth;
+
 use crate::rateline::{Positions, plain, positions, quoted, timing_clauses};
-use crate::{Band, Compounding, Edge, Error, ErrorKind, PriceBasis, RateLine, Result, Spec, Timing};
+use crate::{Error, ErrorKind, PriceBasis, RateLine, Result, Spec, Timing};
+use growth::{GrowthByYear, PersistentGrowth, Regimes};
 use serde::Deserialize;
 use std::fmt;
 
@@ -34,13 +37,31 @@ impl fmt::Display for ScheduleStatus {
 ///
 /// The text is TOML. Required are `id` (lower-case letters, digits and hyphens, a letter first), `title`, `body`, `year`,
 /// `place`, `address`, `status` (current, superseded, unknown), `complete`, `checked` (what was compared with
-/// the document), and one of `line` (a rate line), `table` (pairs of offset and factor) and `growth_by_year`.
+/// the document), and one of `line` (a rate line), `table` (pairs of offset and factor), `growth_by_year`,
+/// `persistent_growth` and `regimes`.
 /// Optional: `timing` ("flows middle, base start"), `prices` ("real" or "nominal"), `second_hand` (read in
 /// another body's text), `missing` (what is not in it; required where `complete` is false), `notes`, and
 /// `companion` (`id`, `beyond`: the schedule that its body wants run beside it over so many years).
 ///
 /// `growth_by_year` has `first` (1, or a calendar year), `growth` (fractions, a year each), `after` (growth past
 /// the last one), `preference`, `hazard`, `elasticity` and `exact`. The first year's growth also holds before it.
+///
+/// `persistent_growth` has `preference`, `hazard`, `elasticity`, `mean` (of log growth), `sd` (of the yearly shock),
+/// `persistence`, and `start`, the departure of log growth from its mean in the year that ends at the base (0 where left
+/// out).
+///
+/// `regimes` has `preference`, `hazard`, `elasticity`, `states` (a list of `{ mean, sd }` of log growth), `transition`
+/// (a row for each state: the chances of passing from it to each state before the next year's growth is drawn)
+/// and `start` (the chances of each state at the base):
+///
+/// ```text
+/// [regimes]
+/// preference = 0.01
+/// elasticity = 2
+/// states = [{ mean = 0.025, sd = 0.02 }, { mean = -0.01, sd = 0.04 }]
+/// transition = [[0.95, 0.05], [0.3, 0.7]]
+/// start = [1, 0]
+/// ```
 ///
 /// ```
 /// use hence_core::Schedule;
@@ -84,6 +105,8 @@ struct Raw {
     line: Option<String>,
     table: Option<Vec<(f64, f64)>>,
     growth_by_year: Option<GrowthByYear>,
+    persistent_growth: Option<PersistentGrowth>,
+    regimes: Option<Regimes>,
     timing: Option<String>,
     prices: Option<PriceBasis>,
     status: ScheduleStatus,
@@ -102,20 +125,6 @@ struct Raw {
 struct Companion {
     id: String,
     beyond: f64,
-}
-
-#[derive(Clone, Debug, PartialEq, Deserialize)]
-#[serde(deny_unknown_fields)]
-struct GrowthByYear {
-    first: i32,
-    growth: Vec<f64>,
-    after: Option<f64>,
-    preference: f64,
-    #[serde(default)]
-    hazard: f64,
-    elasticity: f64,
-    #[serde(default)]
-    exact: bool,
 }
 
 impl Schedule {
@@ -145,8 +154,9 @@ impl Schedule {
         })?;
         let field = |field: &str, message: String| bad(name, format!("{field}: {message}"));
         check_fields(&raw).map_err(|(name, message)| field(name, message))?;
-        let spec = match (&raw.line, &raw.table, &raw.growth_by_year) {
-            (Some(line), None, None) => {
+        let curves = (&raw.line, &raw.table, &raw.growth_by_year, &raw.persistent_growth, &raw.regimes);
+        let spec = match curves {
+            (Some(line), None, None, None, None) => {
                 let line = RateLine::parse(line).map_err(|error| field("line", in_line(&error)))?;
                 if line.timing().is_some() {
                     let message = "timing stands in the line, it belongs into the field `timing`";
@@ -154,12 +164,21 @@ impl Schedule {
                 }
                 line.spec
             }
-            (None, Some(table), None) => {
+            (None, Some(table), None, None, None) => {
                 Spec::Table(checked_table(table).map_err(|text| field("table", text))?)
             }
-            (None, None, Some(path)) => path.spec().map_err(|text| field("growth_by_year", text))?,
+            (None, None, Some(path), None, None) => {
+                path.spec().map_err(|text| field("growth_by_year", text))?
+            }
+            (None, None, None, Some(growth), None) => {
+                growth.spec().map_err(|text| field("persistent_growth", text))?
+            }
+            (None, None, None, None, Some(regimes)) => {
+                regimes.spec().map_err(|text| field("regimes", text))?
+            }
             _ => {
-                let message = "give exactly one of `line`, `table` and `growth_by_year`";
+                let message = "give exactly one of `line`, `table`, `growth_by_year`, `persistent_growth` and \
+                               `regimes`";
                 return Err(bad(name, message.into()));
             }
         };
@@ -208,10 +227,15 @@ impl Schedule {
     }
     /// Its rate line with the timing it states, which parses to the same curve and timing.
     ///
-    /// **Errors**: `Unsupported` for a table of factors, which no line can state.
+    /// **Errors**: `Unsupported` for a curve that no line can state ([`Spec::fits_a_line`]).
     pub fn line(&self) -> Result<String> {
-        if let Spec::Table(_) = self.spec {
-            let message = format!("{} is a table of factors, which has no rate line", self.id());
+        if !self.spec.fits_a_line() {
+            let what = match self.spec {
+                Spec::Table(_) => "a table of factors, which has",
+                Spec::GrowthRegimes { .. } => "a curve of growth in states, which has",
+                _ => "a curve of growth that starts apart from its mean, which has",
+            };
+            let message = format!("{} is {what} no rate line", self.id());
             return Err(Error::new(ErrorKind::Unsupported, "id", message).with_hint("its id"));
         }
         Ok(format!("{}{}", self.spec, timing_clauses(self.positions)))
@@ -335,36 +359,4 @@ fn checked_table(rows: &[(f64, f64)]) -> std::result::Result<Vec<(f64, f64)>, St
         }
     }
     Ok(rows.to_vec())
-}
-
-impl GrowthByYear {
-    fn spec(&self) -> std::result::Result<Spec, String> {
-        let last = i64::from(self.first) + self.growth.len() as i64 - 1;
-        let calendar = (1000..=9999).contains(&self.first) && last <= 9999;
-        if !calendar && (self.first != 1 || last >= 1000) {
-            let message = "allowed 1 (with growth to year 999 at most) or a calendar year";
-            return Err(format!("first is {}, {message}", self.first));
-        }
-        if self.growth.is_empty() {
-            return Err("growth is empty".into());
-        }
-        let numbers = [self.preference, self.hazard, self.elasticity];
-        let all = self.growth.iter().chain(&self.after).chain(&numbers);
-        if all.clone().any(|number| !number.is_finite()) {
-            return Err("every number must be finite".into());
-        }
-        let edge = |year: i32| if calendar { Edge::Year(year) } else { Edge::Offset(f64::from(year)) };
-        let years = self.growth.iter().zip(self.first..);
-        let mut growth: Vec<Band> =
-            years.map(|(&value, year)| Band { value, to: Some(edge(year)) }).collect();
-        growth.extend(self.after.map(|value| Band { value, to: None }));
-        Ok(Spec::Ramsey {
-            preference: self.preference,
-            hazard: self.hazard,
-            elasticity: self.elasticity,
-            growth,
-            exact: self.exact,
-            compounding: Compounding::Yearly,
-        })
-    }
 }

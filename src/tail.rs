@@ -90,7 +90,7 @@ impl Tail {
     /// mixture, the lowest of its components' last rates; a gamma curve's is 0, and it converges for x = 0 only if its
     /// mean exceeds its standard deviation); `OutsideDomain` for ever under a table or a curve that ends, and past the
     /// end of such a curve; `NoMeaning` where the tail ends before t; `RateRange` for fields outside their limits;
-    /// `Unsupported` under a gamma curve where -0.01% < x < 0.
+    /// `Unsupported` for ever under a gamma curve where -0.01% < x < 0, and under growth that persists or switches.
     ///
     /// **Source**: geometric series, as for the growing perpetuity F (1+x)/(r - x), M. J. Gordon, The Investment,
     /// Financing and Valuation of the Corporation, 1962; gamma curve, M. L. Weitzman, Gamma Discounting, American Economic

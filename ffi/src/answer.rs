@@ -7,7 +7,7 @@ use libc::c_char;
 use crate::arguments;
 use crate::error::{Failure, Guarded, guard, hence_error};
 use crate::status::{
-    HENCE_ERR_CAPACITY, HENCE_ERR_LENGTH, HENCE_ERR_NULL, HENCE_ERR_RANGE, HENCE_ERR_SHAPE, HENCE_ERR_SYNTAX,
+    HENCE_ERR_CAPACITY, HENCE_ERR_LENGTH, HENCE_ERR_RANGE, HENCE_ERR_SHAPE, HENCE_ERR_SYNTAX,
 };
 use crate::worksheet::{Cell, CellError, Function, Range, call};
 
@@ -75,10 +75,7 @@ unsafe fn read<'a>(range: *const hence_range, index: usize) -> Result<Option<Ran
     }
     // SAFETY: checked inside for NULL, alignment and length; readable by the caller's contract.
     let numbers = unsafe { arguments::slice(given.numbers, n, 2) }.map_err(about)?;
-    let mut cells = Vec::new();
-    if cells.try_reserve_exact(n).is_err() {
-        return Err(about(Failure::new(HENCE_ERR_LENGTH, 2, format!("there is no memory for {n} cells"))));
-    }
+    let mut cells = arguments::reserve(n, 2).map_err(about)?;
     if given.kinds.is_null() {
         cells.extend(numbers.iter().copied().map(Cell::Number));
         return Ok(Range::new(given.rows, given.columns, cells));
@@ -166,7 +163,7 @@ pub unsafe extern "C" fn hence_answer_free(answer: *mut hence_answer) {
 /// The numbers of rows and columns of an answer.
 ///
 /// Arguments: `answer` (in, not NULL); `rows`, `columns` (out, not NULL, both at least 1); `error` (out, may be NULL).
-/// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT. Threads: any.
+/// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_OVERLAP. Threads: any.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_answer_shape(
     answer: *const hence_answer,
@@ -179,6 +176,7 @@ pub unsafe extern "C" fn hence_answer_shape(
         let range = &unsafe { borrow(answer) }?.range;
         arguments::output(rows, 1, 2)?;
         arguments::output(columns, 1, 3)?;
+        arguments::apart(rows, 1, columns, 1, 3)?;
         // SAFETY: both are not NULL and aligned (checked), and writable by the caller's contract.
         unsafe {
             rows.write(range.rows());
@@ -195,8 +193,8 @@ pub unsafe extern "C" fn hence_answer_shape(
 /// Arguments: `answer` (in, not NULL); `numbers` (out, `n` doubles): the number of a cell, the ERROR.TYPE number of an
 /// error value, 0 for a text; `kinds` (out, `n` bytes): HENCE_CELL_NUMBER, HENCE_CELL_TEXT or HENCE_CELL_ERROR; `n` (in):
 /// rows x columns; `error` (out, may be NULL).
-/// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT; HENCE_ERR_CAPACITY with the number of cells as index where `n`
-/// is another. Threads: any.
+/// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_OVERLAP; HENCE_ERR_CAPACITY with the number of cells
+/// as index where `n` is another. Threads: any.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_answer_cells(
     answer: *const hence_answer,
@@ -216,6 +214,7 @@ pub unsafe extern "C" fn hence_answer_cells(
         }
         arguments::output(numbers, n, 2)?;
         arguments::output(kinds, n, 3)?;
+        arguments::apart(numbers, n, kinds, n, 3)?;
         for (i, cell) in cells.iter().enumerate() {
             let (number, kind) = match cell {
                 Cell::Number(number) => (*number, HENCE_CELL_NUMBER),
@@ -241,7 +240,8 @@ pub unsafe extern "C" fn hence_answer_cells(
 /// Arguments: `answer` (in, not NULL); `cell` (in): its place, row by row from 0; `buffer` (out): `capacity` bytes of the
 /// caller's, gets NUL-ended UTF-8; `capacity` (in); `error` (out, may be NULL). A buffer that is too small is
 /// HENCE_ERR_CAPACITY, with the bytes needed as index, and stays untouched.
-/// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_CAPACITY; HENCE_ERR_LENGTH where there is no such cell. Threads: any.
+/// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_CAPACITY; HENCE_ERR_LENGTH where there is no such
+/// cell. Threads: any.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_answer_text(
     answer: *const hence_answer,
@@ -266,8 +266,8 @@ pub unsafe extern "C" fn hence_answer_text(
 }
 
 /// # Safety
-/// `answer` is NULL or a live answer.
+/// As [`arguments::handle`].
 unsafe fn borrow<'a>(answer: *const hence_answer) -> Result<&'a hence_answer, Failure> {
-    // SAFETY: NULL gives None; else a live answer by the caller's contract.
-    unsafe { answer.as_ref() }.ok_or_else(|| Failure::new(HENCE_ERR_NULL, 1, "the answer is NULL"))
+    // SAFETY: the caller's contract, passed on.
+    unsafe { arguments::handle(answer, "answer") }
 }

@@ -13,11 +13,17 @@ use crate::status::{
 /// The longest array accepted, in elements.
 pub const HENCE_LENGTH_MAX: usize = 1_073_741_824;
 
-fn check<T>(pointer: *const T, length: usize, argument: i32) -> Result<(), Failure> {
-    if length > HENCE_LENGTH_MAX {
-        let message = format!("length {length}, allowed at most {HENCE_LENGTH_MAX}");
-        return Err(Failure::new(HENCE_ERR_LENGTH, argument + 1, message));
+/// Checks a length. `argument` counts from 1.
+pub(crate) fn length(length: usize, argument: i32) -> Result<(), Failure> {
+    if length <= HENCE_LENGTH_MAX {
+        return Ok(());
     }
+    let message = format!("length {length}, allowed at most {HENCE_LENGTH_MAX}");
+    Err(Failure::new(HENCE_ERR_LENGTH, argument, message))
+}
+
+fn check<T>(pointer: *const T, count: usize, argument: i32) -> Result<(), Failure> {
+    length(count, argument + 1)?;
     if pointer.is_null() {
         return Err(Failure::new(HENCE_ERR_NULL, argument, "the pointer is NULL"));
     }
@@ -25,6 +31,18 @@ fn check<T>(pointer: *const T, length: usize, argument: i32) -> Result<(), Failu
         return Err(Failure::new(HENCE_ERR_ALIGNMENT, argument, "the pointer is not aligned for its type"));
     }
     Ok(())
+}
+
+/// A handle that the library made. `noun` names it in the message.
+///
+/// # Safety
+/// `pointer` is NULL, not aligned (both are answered), or a live handle.
+pub(crate) unsafe fn handle<'a, T>(pointer: *const T, noun: &str) -> Result<&'a T, Failure> {
+    if !pointer.is_null() && !pointer.is_aligned() {
+        return Err(Failure::new(HENCE_ERR_ALIGNMENT, 1, format!("the {noun} is not a pointer to one")));
+    }
+    // SAFETY: NULL gives None; else aligned (checked) and a live handle by the caller's contract.
+    unsafe { pointer.as_ref() }.ok_or_else(|| Failure::new(HENCE_ERR_NULL, 1, format!("the {noun} is NULL")))
 }
 
 /// Checks a pointer that is read from.
@@ -69,22 +87,73 @@ pub(crate) unsafe fn numbers<'a>(
     Ok(slice)
 }
 
+/// A finite number.
+pub(crate) fn finite(number: f64, argument: i32) -> Result<(), Failure> {
+    if number.is_finite() {
+        return Ok(());
+    }
+    Err(Failure::new(HENCE_ERR_NOT_FINITE, argument, format!("{number} is not finite")))
+}
+
 /// Checks an output array, to be written only once the result is known.
 pub(crate) fn output<T>(pointer: *mut T, length: usize, argument: i32) -> Result<(), Failure> {
     if length == 0 { Ok(()) } else { check(pointer, length, argument) }
 }
 
-/// Refuses an output that overlaps an input of the same length.
-pub(crate) fn apart(
-    input: *const f64,
-    output: *const f64,
+/// Refuses an output that overlaps another argument, an input or an output too.
+pub(crate) fn apart<A, B>(
+    other: *const A,
     length: usize,
+    output: *const B,
+    written: usize,
     argument: i32,
 ) -> Result<(), Failure> {
-    let bytes = length.saturating_mul(std::mem::size_of::<f64>());
-    let (a, b) = (input as usize, output as usize);
-    if length > 0 && a < b.saturating_add(bytes) && b < a.saturating_add(bytes) {
-        return Err(Failure::new(HENCE_ERR_OVERLAP, argument, "the output overlaps an input"));
+    let end = |start: usize, length: usize, size: usize| start.saturating_add(length.saturating_mul(size));
+    let (a, b) = (other as usize, output as usize);
+    let (a_end, b_end) = (end(a, length, size_of::<A>()), end(b, written, size_of::<B>()));
+    if length > 0 && written > 0 && a < b_end && b < a_end {
+        return Err(Failure::new(HENCE_ERR_OVERLAP, argument, "the output overlaps another argument"));
+    }
+    Ok(())
+}
+
+/// Memory for as many elements. An allocation that fails must not end the caller's process. `argument` is the length.
+pub(crate) fn reserve<T>(length: usize, argument: i32) -> Result<Vec<T>, Failure> {
+    let mut elements = Vec::new();
+    if elements.try_reserve_exact(length).is_err() {
+        return Err(Failure::new(
+            HENCE_ERR_LENGTH,
+            argument,
+            format!("there is no memory for {length} elements"),
+        ));
+    }
+    Ok(elements)
+}
+
+/// Numbers for results, of which none is written before all are known. `argument` is the length.
+pub(crate) fn buffer(length: usize, argument: i32) -> Result<Vec<f64>, Failure> {
+    let mut numbers = reserve(length, argument)?;
+    numbers.resize(length, 0.0);
+    Ok(numbers)
+}
+
+/// Writes `length` results, once all of them are known. `argument` is the length.
+///
+/// # Safety
+/// `out` is writable for `length` doubles.
+pub(crate) unsafe fn fill(
+    out: *mut f64,
+    length: usize,
+    argument: i32,
+    result: impl Fn(usize) -> Result<f64, Failure>,
+) -> Result<(), Failure> {
+    let mut results = buffer(length, argument)?;
+    for (i, place) in results.iter_mut().enumerate() {
+        *place = result(i)?;
+    }
+    if length > 0 {
+        // SAFETY: `out` holds `length` doubles by the caller's contract, and `results` is memory of its own.
+        unsafe { std::ptr::copy_nonoverlapping(results.as_ptr(), out, length) };
     }
     Ok(())
 }

@@ -1,6 +1,6 @@
-//! Factors, rates and present values over arrays.
+//! Factors and rates over arrays.
 
-use hence_core::{Curve, Result, present_value};
+use hence_core::{Curve, Result};
 
 use crate::arguments;
 use crate::basis::{borrow, hence_basis};
@@ -20,8 +20,8 @@ unsafe fn each(
         let basis = unsafe { borrow(basis) }?;
         let offsets = unsafe { arguments::numbers(offsets, n, 2) }?;
         arguments::output(out, n, 4)?;
-        arguments::apart(offsets.as_ptr(), out, n, 4)?;
-        let mut results = vec![0.0; n];
+        arguments::apart(offsets.as_ptr(), n, out, n, 4)?;
+        let mut results = arguments::buffer(n, 3)?;
         compute(&basis.curve, offsets, &mut results).map_err(|e| Failure::core(&e, 2))?;
         if n > 0 {
             // SAFETY: `out` is checked, does not overlap and holds `n` doubles by the caller's contract.
@@ -45,6 +45,8 @@ fn scalar(f: impl Fn(&Curve, f64) -> Result<f64>) -> impl Fn(&Curve, &[f64], &mu
 
 /// Discount factors D(t), one an offset.
 ///
+/// In cells: HENCE.FACTOR.
+///
 /// Arguments: `basis` (in, not NULL); `offsets` (in, years from the base, `n` doubles, borrowed; NULL only when `n` is
 /// 0); `n` (in); `factors` (out, `n` doubles, may not overlap `offsets`); `error` (out, may be NULL).
 /// Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP; HENCE_ERR_NOT_FINITE or
@@ -63,6 +65,8 @@ pub unsafe extern "C" fn hence_factors(
 
 /// Forward rates of the years that end at the offsets: D(t-1)/D(t) - 1, fractions per year.
 ///
+/// In cells: HENCE.RATE.
+///
 /// Arguments, statuses and threads as hence_factors.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_forward_rates(
@@ -78,6 +82,8 @@ pub unsafe extern "C" fn hence_forward_rates(
 
 /// Mean yearly rates to the offsets: D(t)^(-1/t) - 1, at 0 its limit, fractions per year.
 ///
+/// In cells: HENCE.MEANRATE.
+///
 /// Arguments, statuses and threads as hence_factors.
 #[unsafe(no_mangle)]
 pub unsafe extern "C" fn hence_mean_rates(
@@ -89,37 +95,4 @@ pub unsafe extern "C" fn hence_mean_rates(
 ) -> i32 {
     // SAFETY: the caller's contract, passed on.
     unsafe { each(basis, offsets, n, rates, error, scalar(Curve::mean_rate)) }
-}
-
-/// Present value of one stream: the sum of D(offset) x flow, correctly rounded from the factors.
-///
-/// Arguments: `basis` (in, not NULL); `offsets` (in, `n` doubles, years from the base); `flows` (in, `n` doubles,
-/// any sign); `n` (in; 0 gives 0); `value` (out, one double, not NULL); `error` (out, may be NULL).
-/// Returns and threads as hence_factors.
-#[unsafe(no_mangle)]
-pub unsafe extern "C" fn hence_present_value(
-    basis: *const hence_basis,
-    offsets: *const f64,
-    flows: *const f64,
-    n: usize,
-    value: *mut f64,
-    error: *mut hence_error,
-) -> i32 {
-    let body = || {
-        // SAFETY: the caller's contracts for `basis`, `offsets` and `flows`.
-        let basis = unsafe { borrow(basis) }?;
-        let offsets = unsafe { arguments::numbers(offsets, n, 2) }?;
-        let flows = unsafe { arguments::numbers(flows, n, 3) }?;
-        arguments::output(value, 1, 5)?;
-        let result = if n == 0 {
-            0.0
-        } else {
-            present_value(&basis.curve, offsets, flows).map_err(|e| Failure::core(&e, 2))?
-        };
-        // SAFETY: `value` is not NULL and aligned (checked), and writable by the caller's contract.
-        unsafe { value.write(result) };
-        Ok(())
-    };
-    // SAFETY: the caller's contract for `error`.
-    unsafe { guard(error, body) }
 }

@@ -6,7 +6,14 @@ use libc::c_char;
 
 use crate::status;
 
-/// What went wrong, written into the caller's own struct. Nothing in it is allocated or freed.
+// The guard turns a panic into a status only where panics unwind.
+#[cfg(not(panic = "unwind"))]
+compile_error!(
+    "hence-ffi needs panic = \"unwind\": with another setting a fault would end the caller's process"
+);
+
+/// What went wrong, written into the caller's own struct, which may overlap no other argument. Nothing in it is
+/// allocated or freed.
 #[repr(C)]
 #[derive(Clone, Copy)]
 pub struct hence_error {
@@ -16,7 +23,8 @@ pub struct hence_error {
     pub code: i32,
     /// Out: the argument it is about, counted from 1; 0 where it is about none.
     pub argument: i32,
-    /// Out: the index within that argument, or the character within a text; -1 where there is none.
+    /// Out: the index within that argument, from 0; within a text the character (HENCE_ERR_UTF8: the byte); what is needed
+    /// (HENCE_ERR_CAPACITY); -1 where there is none.
     pub index: i64,
     /// Out: the message, UTF-8, always ended by NUL, cut at a character.
     pub message: [c_char; 256],
@@ -33,6 +41,17 @@ pub(crate) struct Failure {
 impl Failure {
     pub fn new(code: i32, argument: i32, message: impl Into<String>) -> Self {
         Failure { code, argument, index: -1, message: message.into() }
+    }
+
+    /// With the index within the argument.
+    pub fn with_index(mut self, index: usize) -> Self {
+        self.index = i64::try_from(index).unwrap_or(-1);
+        self
+    }
+
+    /// A library error about one element of the given argument.
+    pub fn at(error: &hence_core::Error, argument: i32, index: usize) -> Self {
+        Failure::core(error, argument).with_index(index)
     }
 
     /// A library error about the given argument.
@@ -74,6 +93,13 @@ unsafe fn write(error: *mut hence_error, failure: &Failure) {
     }
     // SAFETY: not NULL and aligned; `struct_size` is the first field and set by the caller.
     let size = unsafe { (&raw const (*error).struct_size).read() } as usize;
+    // Whole fields only; the message alone may be cut.
+    let message = std::mem::offset_of!(hence_error, message);
+    let ends = [std::mem::offset_of!(hence_error, argument), std::mem::offset_of!(hence_error, argument) + 4];
+    let known = match size {
+        size if size >= message => size.min(size_of::<hence_error>()),
+        size => ends.into_iter().rfind(|end| *end <= size).unwrap_or(0),
+    };
     let mut full = hence_error {
         struct_size: size as u32,
         code: failure.code,
@@ -81,22 +107,96 @@ unsafe fn write(error: *mut hence_error, failure: &Failure) {
         index: failure.index,
         message: [0; 256],
     };
-    let mut end = failure.message.len().min(full.message.len() - 1);
+    // At a character, with room for the NUL that is there already.
+    let room = known.saturating_sub(message).saturating_sub(1);
+    let mut end = failure.message.len().min(room);
     while !failure.message.is_char_boundary(end) {
         end -= 1;
     }
     for (to, from) in full.message.iter_mut().zip(&failure.message.as_bytes()[..end]) {
         *to = *from as c_char;
     }
-    let known = size.min(std::mem::size_of::<hence_error>());
-    if known < std::mem::size_of::<u32>() {
-        return;
-    }
     // SAFETY: `known` bytes belong to the caller by its `struct_size`, and `full` holds at least as many.
     unsafe { std::ptr::copy_nonoverlapping((&raw const full).cast::<u8>(), error.cast::<u8>(), known) };
-    if known < std::mem::size_of::<hence_error>() && known > std::mem::offset_of!(hence_error, message) {
-        // A shorter message field of an older caller still ends in NUL.
-        // SAFETY: byte `known - 1` is within the caller's struct.
-        unsafe { error.cast::<u8>().add(known - 1).write(0) };
+}
+
+#[cfg(test)]
+mod tests {
+    use std::ffi::CStr;
+
+    use super::*;
+
+    fn blank() -> hence_error {
+        hence_error {
+            struct_size: size_of::<hence_error>() as u32,
+            code: 7,
+            argument: 7,
+            index: 7,
+            message: [0x55; 256],
+        }
+    }
+
+    fn message(error: &hence_error) -> &str {
+        // SAFETY: every message ends in NUL within the struct.
+        unsafe { CStr::from_ptr(error.message.as_ptr()) }.to_str().expect("a message is UTF-8")
+    }
+
+    /// A panic inside an export comes out as a status, and what the body would have written is not written.
+    #[test]
+    fn a_panic_is_a_status() {
+        let mut error = blank();
+        let mut output = -7.0;
+        let body = || {
+            output = [1.0][std::hint::black_box(1)];
+            Ok(())
+        };
+        // SAFETY: a whole error struct.
+        assert_eq!(unsafe { guard(&mut error, body) }, status::HENCE_ERR_INTERNAL);
+        assert_eq!((error.code, error.argument, error.index), (status::HENCE_ERR_INTERNAL, 0, -1));
+        assert!(message(&error).contains("nothing was written"));
+        assert_eq!(output, -7.0);
+        // SAFETY: NULL is allowed.
+        assert_eq!(
+            unsafe { guard(std::ptr::null_mut(), || panic!("a forced fault")) },
+            status::HENCE_ERR_INTERNAL
+        );
+    }
+
+    #[test]
+    fn success_clears_the_struct() {
+        let mut error = blank();
+        // SAFETY: a whole error struct.
+        assert_eq!(unsafe { guard(&mut error, || Ok(())) }, status::HENCE_OK);
+        assert_eq!((error.code, error.argument, error.index, message(&error)), (0, 0, -1, ""));
+    }
+
+    /// At 255 bytes and above, in characters of one byte to four.
+    #[test]
+    fn a_long_message_is_cut_at_a_character() {
+        for c in ['a', 'é', '€', '𝄞'] {
+            for length in [254 / c.len_utf8(), 255 / c.len_utf8(), 300] {
+                let text: String = std::iter::repeat_n(c, length).collect();
+                let mut error = blank();
+                // SAFETY: a whole error struct.
+                unsafe { guard(&mut error, || Err(Failure::new(10, 1, text.clone()))) };
+                let said = message(&error);
+                assert!(text.starts_with(said) && said.len() > 251.min(text.len() - 1), "{c} {length}");
+            }
+        }
+    }
+
+    /// No byte beyond the caller's struct_size is written.
+    #[test]
+    fn a_smaller_struct_keeps_its_end() {
+        for size in 0..=size_of::<hence_error>() as u32 {
+            let mut error = blank();
+            error.struct_size = size;
+            // SAFETY: as many bytes as struct_size says, and more.
+            unsafe { guard(&mut error, || Err(Failure::new(10, 1, "x".repeat(300)))) };
+            assert_eq!(error.code == 10, size >= 8, "{size}");
+            let kept = error.message.iter().rev().take_while(|c| **c == 0x55).count();
+            let within = (size as usize).saturating_sub(std::mem::offset_of!(hence_error, message));
+            assert_eq!(kept, 256 - within, "{size}");
+        }
     }
 }

@@ -8,10 +8,14 @@
 mod answer;
 mod arguments;
 mod basis;
+mod calendar;
 mod curves;
 mod error;
 mod evidence;
+mod measures;
 mod status;
+#[cfg(test)]
+mod tests;
 pub mod worksheet;
 
 pub use answer::{
@@ -20,10 +24,18 @@ pub use answer::{
     hence_worksheet_call,
 };
 pub use arguments::HENCE_LENGTH_MAX;
-pub use basis::{hence_basis, hence_basis_describe, hence_basis_free, hence_basis_parse};
-pub use curves::{hence_factors, hence_forward_rates, hence_mean_rates, hence_present_value};
+pub use basis::{
+    hence_basis, hence_basis_describe, hence_basis_free, hence_basis_line, hence_basis_parse,
+    hence_basis_parse_at, hence_basis_timing, hence_schedule_line,
+};
+pub use calendar::{hence_offsets_from_dates, hence_offsets_from_years};
+pub use curves::{hence_factors, hence_forward_rates, hence_mean_rates};
 pub use error::hence_error;
-pub use evidence::hence_ramsey_rate;
+pub use evidence::{
+    hence_elasticity_from_taxes, hence_equity_weight, hence_ramsey_rate, hence_ramsey_rate_uncertain,
+    hence_real_rate,
+};
+pub use measures::{hence_annual_equivalent, hence_irr_all, hence_present_value, hence_present_values};
 pub use status::*;
 
 /// The version of the binary interface: raised when a function, struct or constant changes its meaning.

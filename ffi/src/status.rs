@@ -11,9 +11,9 @@ pub const HENCE_OK: i32 = 0;
 pub const HENCE_ERR_NULL: i32 = 10;
 /// A pointer is not aligned for its type.
 pub const HENCE_ERR_ALIGNMENT: i32 = 11;
-/// A length is above HENCE_LENGTH_MAX.
+/// A length is above HENCE_LENGTH_MAX, or there is no memory for as many results.
 pub const HENCE_ERR_LENGTH: i32 = 12;
-/// Output and input overlap.
+/// An output overlaps an input or another output.
 pub const HENCE_ERR_OVERLAP: i32 = 13;
 /// The caller's buffer is too small.
 pub const HENCE_ERR_CAPACITY: i32 = 14;

@@ -1,6 +1,7 @@
 //! The one declaration of the command line: help, man page and completions derive from it.
 
 use std::ffi::{OsStr, OsString};
+use std::num::NonZeroUsize;
 use std::path::PathBuf;
 
 use clap::{Args, CommandFactory, Parser, Subcommand, ValueEnum};
@@ -45,8 +46,16 @@ pub enum Command {
     Fill(Fill),
     /// Compare what a workbook holds with what its declared basis gives
     Check(Check),
+    /// Compare the options under several bases, and find where the decision switches
+    Compare(Compare),
+    /// Write one page for those who decide: question, options, basis, answer, what would change it
+    Brief(Brief),
     /// Print the factors and rates of a curve
     Curve(Curve),
+    /// Draw the rate from distributions, and print how the net present values spread
+    Draws(Draws),
+    /// Build a Ramsey rate from its parts, and show where every figure comes from
+    Rate(Rate),
     /// List the schedules, or print one with its source
     Schedules(Schedules),
     /// List the roles that a workbook's names declare, or suggest names for one that has none
@@ -86,6 +95,9 @@ pub struct Fill {
     /// Replace formulas found in target cells, where they are not hence's own
     #[arg(long)]
     pub replace_formulas: bool,
+    /// A rate line or schedule to value it on besides, for the audit's sensitivity sheet
+    #[arg(long, value_name = "LINE|ID")]
+    pub against: Vec<String>,
     /// A text for the audit summary: the date or state of the data
     #[arg(long, value_name = "TEXT")]
     pub as_of: Option<String>,
@@ -123,6 +135,62 @@ pub struct Check {
 }
 
 #[derive(Debug, Args)]
+pub struct Compare {
+    /// The workbook; - reads it from standard input
+    #[arg(value_name = "BOOK")]
+    pub book: PathBuf,
+    /// Rate lines or schedules to value it on, besides the one it declares and the companion of that; several may follow
+    #[arg(long, value_name = "LINE|ID")]
+    pub against: Vec<String>,
+    /// Give a role to cells without a defined name
+    #[arg(long = "role", value_name = "ROLE=RANGE")]
+    pub roles: Vec<String>,
+    /// Write the tables into a workbook of their own (.xlsx); - for standard output
+    #[arg(long, value_name = "FILE")]
+    pub out: Option<PathBuf>,
+    /// Comma-separated values
+    #[arg(long, conflicts_with = "json")]
+    pub csv: bool,
+    /// Print one JSON document
+    #[arg(long)]
+    pub json: bool,
+    /// Replace an existing output
+    #[arg(long)]
+    pub force: bool,
+}
+
+#[derive(Debug, Args)]
+pub struct Brief {
+    /// The workbook; - reads it from standard input
+    #[arg(value_name = "BOOK")]
+    pub book: PathBuf,
+    /// The page to write: .html, or .md for Markdown; - for HTML on standard output
+    #[arg(long, value_name = "FILE")]
+    pub out: PathBuf,
+    /// The question on the page; else the workbook's title, else one made from the names of the options
+    #[arg(long, value_name = "TEXT")]
+    pub question: Option<String>,
+    /// Rate lines or schedules to hold the result against; several may follow
+    #[arg(long, value_name = "LINE|ID")]
+    pub against: Vec<String>,
+    /// Give a role to cells without a defined name
+    #[arg(long = "role", value_name = "ROLE=RANGE")]
+    pub roles: Vec<String>,
+    /// A text for the foot of the page: the date or state of the data
+    #[arg(long, value_name = "TEXT")]
+    pub as_of: Option<String>,
+    /// A text for the foot of the page: who ran it
+    #[arg(long, value_name = "TEXT")]
+    pub by: Option<String>,
+    /// Print one JSON document
+    #[arg(long)]
+    pub json: bool,
+    /// Replace an existing output
+    #[arg(long)]
+    pub force: bool,
+}
+
+#[derive(Debug, Args)]
 pub struct Curve {
     /// A rate line, a rate or the id of a schedule
     #[arg(value_name = "LINE|ID", allow_hyphen_values = true, value_parser = not_an_option)]
@@ -145,6 +213,117 @@ pub struct Curve {
     /// Print one JSON document
     #[arg(long)]
     pub json: bool,
+}
+
+#[derive(Debug, Args)]
+#[command(
+    after_help = "A distribution is a value (1%, an elasticity 1.5), `normal mean 1% sd 0.3%` (with `within 0% to \
+                        2%`), `uniform 1% to 3%`, `triangular 1%, 1.5%, 2%` (lowest, most likely, highest) or `0.3 at 1%, \
+                        0.7 at 2%`. What is left out is taken from the workbook's own Ramsey rule."
+)]
+pub struct Draws {
+    /// The workbook; - reads it from standard input
+    #[arg(value_name = "BOOK")]
+    pub book: PathBuf,
+    /// Pure time preference: a distribution, or a value such as 1%
+    #[arg(long, value_name = "DISTRIBUTION")]
+    pub preference: Option<String>,
+    /// Hazard (else 0%, where the workbook states none)
+    #[arg(long, value_name = "DISTRIBUTION")]
+    pub hazard: Option<String>,
+    /// Elasticity of marginal utility, in plain numbers
+    #[arg(long, value_name = "DISTRIBUTION")]
+    pub elasticity: Option<String>,
+    /// Growth of consumption per head
+    #[arg(long, value_name = "DISTRIBUTION")]
+    pub growth: Option<String>,
+    /// How many draws, 1 to 10,000,000
+    #[arg(long, value_name = "N", default_value_t = 10_000)]
+    pub draws: usize,
+    /// Another seed gives other random numbers
+    #[arg(long, value_name = "N", default_value_t = 1)]
+    pub seed: u64,
+    /// Threads that share the work, which do not change the results (else as many as the machine runs at once)
+    #[arg(long, value_name = "N")]
+    pub threads: Option<NonZeroUsize>,
+    /// The percentiles to print
+    #[arg(long, value_name = "P,P,...", value_delimiter = ',', default_value = "5,25,50,75,95")]
+    pub percentiles: Vec<f64>,
+    /// Give a role to cells without a defined name
+    #[arg(long = "role", value_name = "ROLE=RANGE")]
+    pub roles: Vec<String>,
+    /// Every draw as comma-separated values: its parts, its rate, the net present value of each option as it stands
+    #[arg(long, conflicts_with = "json")]
+    pub csv: bool,
+    /// Print one JSON document
+    #[arg(long)]
+    pub json: bool,
+}
+
+#[derive(Debug, Args)]
+#[command(group = clap::ArgGroup::new("whose_elasticity").args(["elasticity", "taxes"]).required(true))]
+#[command(group = clap::ArgGroup::new("whose_growth").args(["growth", "growth_from"]).required(true))]
+pub struct Rate {
+    /// Pure time preference: 0.5%
+    #[arg(long, value_name = "RATE")]
+    pub preference: String,
+    /// Hazard, the chance that all ends: a rate, a yearly probability ("probability 1%") or an expected waiting
+    /// time ("every 100 years")
+    #[arg(long, value_name = "HAZARD", default_value = "0%", hide_default_value = true)]
+    pub hazard: String,
+    /// Elasticity of marginal utility: 1.5
+    #[arg(long, value_name = "NUMBER")]
+    pub elasticity: Option<String>,
+    /// Elasticity from the marginal and the average rate of tax on an income, by equal absolute sacrifice: 40%,25%;
+    /// given for several brackets, each with its weight, the weighted mean
+    #[arg(long = "elasticity-from-tax", value_name = "MARGINAL,AVERAGE[,WEIGHT]")]
+    pub taxes: Vec<String>,
+    /// Growth of real consumption per head: 2%
+    #[arg(long, value_name = "RATE")]
+    pub growth: Option<String>,
+    /// Growth estimated from a series of real consumption per head in a workbook: plan.xlsx!Data!B2:B40, or a
+    /// defined name in place of the cells; of two columns or rows the first holds the years
+    #[arg(long, value_name = "BOOK!CELLS", allow_hyphen_values = true)]
+    pub growth_from: Option<String>,
+    /// Which estimate counts as growth
+    #[arg(long, value_name = "ESTIMATE", default_value = "trend", requires = "growth_from")]
+    pub growth_by: GrowthBy,
+    /// Standard deviation of yearly growth (with --persistence of its yearly shock): 3.6%, or `estimated`
+    #[arg(long, value_name = "RATE")]
+    pub sd: Option<String>,
+    /// First-order persistence of log growth: 0.7, or `estimated`
+    #[arg(long, value_name = "NUMBER", requires = "sd")]
+    pub persistence: Option<String>,
+    /// Growth and its standard deviation are those of log growth
+    #[arg(long, requires = "sd")]
+    pub log: bool,
+    /// Compound continuously (log growth always is)
+    #[arg(long)]
+    pub continuous: bool,
+    /// Round estimated figures to so many decimals, rates as percentages
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u8).range(0..=12))]
+    pub decimals: Option<u8>,
+    /// Write the rate as a schedule file of your own (.toml), called by the file's name; - for standard output
+    #[arg(long, value_name = "FILE")]
+    pub schedule: Option<PathBuf>,
+    /// The year to cite the schedule file by (else this year)
+    #[arg(long, requires = "schedule")]
+    pub year: Option<i32>,
+    /// Print one JSON document
+    #[arg(long)]
+    pub json: bool,
+    /// Replace an existing schedule file
+    #[arg(long)]
+    pub force: bool,
+}
+
+/// Which estimate of a series is its growth.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+pub enum GrowthBy {
+    /// The log-linear trend, by least squares
+    Trend,
+    /// The mean, from the first value to the last
+    Mean,
 }
 
 #[derive(Debug, Args)]
@@ -200,6 +379,9 @@ fn is_negative(argument: &OsStr) -> bool {
     rest.is_some_and(|rest| rest.starts_with(|c: char| c.is_ascii_digit()))
 }
 
+/// The option after which several values may stand, once the workbook has been named.
+const SEVERAL: &str = "--against";
+
 /// The arguments as the parser below wants them: `hence BOOK` alone is `hence fill BOOK`, so that a workbook can be
 /// dropped on the program, and arguments that begin with a minus sign and a digit are no options.
 pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
@@ -207,6 +389,7 @@ pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
     let mut prepared: Vec<OsString> = Vec::with_capacity(args.len() + 1);
     let mut command: Option<String> = None;
     let mut wants_value = false;
+    let (mut against, mut book) = (false, false);
     for (i, arg) in args.into_iter().enumerate() {
         let text = arg.to_string_lossy().into_owned();
         if i == 0 {
@@ -227,6 +410,7 @@ pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
         }
         if text.starts_with('-') && text != "-" && !is_negative(&arg) {
             wants_value = takes_value(&cli, &text);
+            against = text == SEVERAL || text.starts_with(&format!("{SEVERAL}="));
             prepared.push(arg);
             continue;
         }
@@ -244,6 +428,13 @@ pub fn prepared(args: Vec<OsString>) -> Vec<OsString> {
             }
         }
         let mut named = OsString::new();
+        if against && book && matches!(command.as_deref(), Some("compare" | "brief")) {
+            named.push(format!("{SEVERAL}="));
+            named.push(arg);
+            prepared.push(named);
+            continue;
+        }
+        book = true;
         if is_negative(&arg) && command.as_deref() != Some("curve") {
             // A file: "./-1.xlsx" cannot be taken for an option.
             named.push("./");
@@ -305,6 +496,27 @@ mod tests {
         assert_eq!(after(&["curve", "-1%", "--at", "-1,0"]), ["curve", "-1%", "--at=-1,0"]);
         assert_eq!(after(&["fill", "-1.xlsx", "--basis", "-0.5%"]), ["fill", "./-1.xlsx", "--basis=-0.5%"]);
         assert_eq!(after(&["-1.xlsx"]), ["fill", "./-1.xlsx"]);
+        let compared =
+            ["compare", "a.xlsx", "--against", "3%", "-1%", "--json", "--against", "-0.5%", "uk-2003"];
+        let due = [
+            "compare",
+            "a.xlsx",
+            "--against",
+            "3%",
+            "--against=-1%",
+            "--json",
+            "--against=-0.5%",
+            "--against=uk-2003",
+        ];
+        assert_eq!(after(&compared), due);
+        assert_eq!(
+            after(&["compare", "--against", "3%", "a.xlsx"]),
+            ["compare", "--against", "3%", "a.xlsx"]
+        );
+        assert_eq!(
+            after(&["brief", "a.xlsx", "--against", "3%", "4%", "--out", "b.md"]),
+            ["brief", "a.xlsx", "--against", "3%", "--against=4%", "--out", "b.md"]
+        );
         assert_eq!(after(&["fill", "--by", "x", "-2.xlsx"]), ["fill", "--by", "x", "./-2.xlsx"]);
     }
 }

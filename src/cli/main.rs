@@ -2,6 +2,7 @@
 
 mod args;
 mod commands;
+mod comparison;
 mod input;
 mod json;
 mod manual;
@@ -88,7 +89,11 @@ fn run(cli: &Cli, terminal: &Terminal) -> Result<Outcome, Failure> {
     match &cli.command {
         Command::Fill(fill) => commands::fill::run(fill, &cli.schedules, terminal),
         Command::Check(check) => commands::check::run(check, &cli.schedules, terminal),
+        Command::Compare(compare) => commands::compare::run(compare, &cli.schedules, terminal),
+        Command::Brief(brief) => commands::brief::run(brief, &cli.schedules, terminal),
         Command::Curve(curve) => commands::curve::run(curve, &cli.schedules, terminal),
+        Command::Draws(draws) => commands::draws::run(draws, &cli.schedules, terminal),
+        Command::Rate(rate) => commands::rate::run(rate, terminal),
         Command::Schedules(schedules) => commands::schedules::run(schedules, &cli.schedules),
         Command::Names(names) => commands::names::run(names, terminal),
         Command::Start(start) => commands::start::run(start, terminal),

@@ -17,19 +17,25 @@ pub fn shortest_or_blank(x: Option<f64>) -> String {
 pub fn money(x: f64) -> String {
     let text = if x.abs() < 1000.0 { format!("{:.2}", x.abs()) } else { format!("{:.0}", x.abs()) };
     let (whole, decimals) = text.split_once('.').map_or((text.as_str(), ""), |(w, d)| (w, d));
-    let mut grouped = String::new();
-    for (i, digit) in whole.chars().enumerate() {
-        if i > 0 && (whole.len() - i) % 3 == 0 {
-            grouped.push(',');
-        }
-        grouped.push(digit);
-    }
+    let mut grouped = grouped(whole);
     if !decimals.is_empty() {
         grouped.push('.');
         grouped.push_str(decimals);
     }
     let zero = grouped.chars().all(|c| matches!(c, '0' | '.' | ','));
     if x < 0.0 && !zero { format!("-{grouped}") } else { grouped }
+}
+
+/// Digits with their thousands apart: 10,000.
+pub fn grouped(digits: &str) -> String {
+    let mut grouped = String::new();
+    for (i, digit) in digits.chars().enumerate() {
+        if i > 0 && (digits.len() - i).is_multiple_of(3) {
+            grouped.push(',');
+        }
+        grouped.push(digit);
+    }
+    grouped
 }
 
 /// A number of things: "1 cell", "2 cells".
@@ -41,7 +47,7 @@ pub fn count(n: usize, thing: &str) -> String {
 pub fn percent(x: f64) -> String {
     let text = format!("{:.4}", x * 100.0);
     let text = text.trim_end_matches('0').trim_end_matches('.');
-    format!("{text}%")
+    format!("{}%", if text == "-0" { "0" } else { text })
 }
 
 #[cfg(test)]
@@ -56,7 +62,7 @@ mod tests {
         assert_eq!(money(1000.0), "1,000");
         assert_eq!(percent(0.035), "3.5%");
         assert_eq!(percent(0.1), "10%");
-        assert_eq!(percent(0.0), "0%");
+        assert_eq!((percent(0.0), percent(-0.0), percent(-1e-9)), ("0%".into(), "0%".into(), "0%".into()));
         assert_eq!((count(1, "cell"), count(0, "cell")), ("1 cell".into(), "0 cells".into()));
     }
 

@@ -6,11 +6,14 @@ use super::edges::Edges;
 use super::gamma::Gamma;
 use super::horizon::{ByFlow, RatePath};
 use super::mixture::Mixture;
+use super::persistent::Persistent;
 use super::piecewise::{Flat, Piecewise};
 use super::ramsey::{Ramsey, slope};
+use super::regimes::Regimes;
+use super::years::Years;
 use super::{Curve, Domain, Form, Parts};
 use crate::dd::{Dd, exp2_m1};
-use crate::{Band, Compounding, Edge, Error, ErrorKind, HorizonRule, Result, Spec, Where};
+use crate::{Band, Compounding, Edge, Error, ErrorKind, HorizonRule, Persistence, Result, Spec, Where};
 
 /// A standard deviation below which gamma factors equal those of the mean rate at every offset allowed.
 const NO_SPREAD: f64 = 1e-40;
@@ -23,13 +26,15 @@ impl Spec {
     /// length in years, needed for whole-horizon rates by length.
     ///
     /// **Ranges**: rates above -50% to 100%; preference above -50% to 100%; hazard 0 to 100%; elasticity 0 to 20;
-    /// growth above -100% to 100%; gamma mean above 0 to 100%; standard deviations 0 to 100% (0 is the certain
+    /// growth above -100% to 100%, and its departure at the base likewise; persistence above -1 and below 1; up to 10
+    /// states of growth, whose chances at the base, and of each row, are 0 or more and sum to 1 within 1e-12 (they
+    /// are divided by their sum); gamma mean above 0 to 100%; standard deviations 0 to 100% (0 is the certain
     /// case); weights from 0, summing to 1 within 1e-12 (they are divided by their sum, so that D(0) is 1); edges
     /// above 0 as stated and increasing; table factors positive and normal, 1 at offset 0.
     ///
-    /// **Errors**: `RateRange`, `NotFinite`, `Weights`, `Edges` with the band, weight or point as index;
-    /// `NeedsBase`, `NeedsLength`; `OutsideDomain` for a length past the last edge; `Unsupported` for
-    /// persistent growth and for the exact Ramsey rule with continuous compounding.
+    /// **Errors**: `RateRange`, `NotFinite`, `Weights`, `Edges`, `Shape` with the band, weight, point, state or row as
+    /// index; `NeedsBase`, `NeedsLength`; `OutsideDomain` for a length past the last edge; `Unsupported` for
+    /// persistence of other than log growth and for the exact Ramsey rule with continuous compounding.
     ///
     /// ```
     /// use hence_core::{Band, Compounding, Edge, Spec, Where};
@@ -99,20 +104,34 @@ impl Spec {
                 persistence,
                 compounding,
             } => {
-                if persistence.is_some() {
-                    return Err(Error::new(
-                        ErrorKind::Unsupported,
-                        "persistence",
-                        "persistent growth is not computed in this version",
-                    )
-                    .with_hint("the same line without persistence, or a schedule of factors"));
-                }
                 let rule = Ramsey::new(*preference, *hazard, *elasticity)?;
                 checks::growth(*mean)?;
                 checks::sd(*sd)?;
-                let rate = rule.uncertain(*mean, *sd, *log);
-                checks::rate(rate.hi)?;
-                flat(rate, if *log { Compounding::Continuous } else { *compounding })
+                match persistence {
+                    None => {
+                        let rate = rule.uncertain(*mean, *sd, *log);
+                        checks::rate(rate.hi)?;
+                        flat(rate, if *log { Compounding::Continuous } else { *compounding })
+                    }
+                    Some(persistence) if *log => persistent(rule, *mean, *sd, *persistence)?,
+                    Some(_) => {
+                        let message = "persistence is that of log growth";
+                        return Err(Error::new(ErrorKind::Unsupported, "persistence", message)
+                            .with_hint("log growth in place of growth"));
+                    }
+                }
+            }
+            Spec::GrowthRegimes { preference, hazard, elasticity, states, transition, start } => {
+                let rule = Ramsey::new(*preference, *hazard, *elasticity)?;
+                let regimes = Regimes::new(rule, states, transition, start)?;
+                let parts = Parts::GrowthRegimes {
+                    rho: rule.rho(),
+                    elasticity: *elasticity,
+                    states: states.clone(),
+                    transition: transition.clone(),
+                    start: start.clone(),
+                };
+                (Form::Years(Years::Regimes(regimes)), Domain::FROM_ZERO, parts)
             }
             Spec::Gamma { mean, sd } => {
                 checks::mean(*mean)?;
@@ -152,6 +171,15 @@ fn exact_ramsey(rule: Ramsey, elasticity: f64, edges: Edges, growth: Vec<f64>) -
     let (closed, open) = (edges.closed(), edges.open());
     let parts = Parts::RamseyExact { rho: rule.rho(), elasticity, edges: closed, growth, open };
     (Form::Lines(Piecewise::from_slopes(edges, slopes)), domain, parts)
+}
+
+fn persistent(rule: Ramsey, mean: f64, sd: f64, persistence: Persistence) -> Result<Built> {
+    checks::persistence(persistence.phi)?;
+    checks::departure(persistence.start)?;
+    let growth = Persistent::new(rule, mean, sd, persistence);
+    let parts =
+        Parts::PersistentGrowth { rho: rule.rho(), elasticity: rule.elasticity(), mean, sd, persistence };
+    Ok((Form::Years(Years::Persistent(growth)), Domain::FROM_ZERO, parts))
 }
 
 fn horizon(path: RatePath, rule: HorizonRule, at: &Where) -> Result<Built> {

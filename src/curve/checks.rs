@@ -26,6 +26,7 @@ const RATE: Range = share("rate", -0.5, false, 1.0);
 const PREFERENCE: Range = share("preference", -0.5, false, 1.0);
 const HAZARD: Range = share("hazard", 0.0, true, 1.0);
 const GROWTH: Range = share("growth", -1.0, false, 1.0);
+const DEPARTURE: Range = share("departure of growth at the base", -1.0, false, 1.0);
 const MEAN: Range = share("mean", 0.0, false, 1.0);
 const SD: Range = share("sd", 0.0, true, 1.0);
 const ELASTICITY: Range =
@@ -66,12 +67,16 @@ pub(crate) fn finite(name: &'static str, value: f64) -> Result<()> {
     Err(Error::new(ErrorKind::NotFinite, name, format!("{name} is {value}, not a finite number")))
 }
 
-pub(super) fn rate(value: f64) -> Result<()> {
+pub(crate) fn rate(value: f64) -> Result<()> {
     RATE.check(value)
 }
 
-pub(super) fn growth(value: f64) -> Result<()> {
+pub(crate) fn growth(value: f64) -> Result<()> {
     GROWTH.check(value)
+}
+
+pub(super) fn departure(value: f64) -> Result<()> {
+    DEPARTURE.check(value)
 }
 
 pub(super) fn mean(value: f64) -> Result<()> {
@@ -86,12 +91,23 @@ pub(crate) fn elasticity(value: f64) -> Result<()> {
     ELASTICITY.check(value)
 }
 
-pub(super) fn preference(value: f64) -> Result<()> {
+pub(crate) fn preference(value: f64) -> Result<()> {
     PREFERENCE.check(value)
 }
 
-pub(super) fn hazard(value: f64) -> Result<()> {
+pub(crate) fn hazard(value: f64) -> Result<()> {
     HAZARD.check(value)
+}
+
+/// phi lies between -1 and 1, neither included: growth would never return to its mean.
+pub(super) fn persistence(value: f64) -> Result<()> {
+    finite("persistence", value)?;
+    if value > -1.0 && value < 1.0 {
+        return Ok(());
+    }
+    let message = format!("persistence is {value}, allowed above -1 and below 1");
+    Err(Error::new(ErrorKind::RateRange, "persistence", message)
+        .with_hint("the first-order autocorrelation of yearly log growth: 0.7"))
 }
 
 #[cfg(test)]
@@ -117,6 +133,8 @@ mod tests {
         assert!(elasticity(0.0).is_ok() && elasticity(20.1).is_err() && elasticity(-0.1).is_err());
         assert!(mean(0.0).is_err() && mean(0.04).is_ok());
         assert!(sd(0.0).is_ok() && sd(-0.1).is_err());
+        assert!(persistence(0.999_999).is_ok() && persistence(-0.5).is_ok());
+        assert!(persistence(1.0).is_err() && persistence(-1.0).is_err() && persistence(f64::NAN).is_err());
     }
 
     #[test]

@@ -8,10 +8,16 @@ mod gamma;
 mod horizon;
 mod mixture;
 mod parts;
+mod persistent;
 mod piecewise;
 mod ramsey;
+mod regimes;
+mod years;
 
-pub(crate) use checks::{elasticity as check_elasticity, finite as check_finite};
+pub(crate) use checks::{
+    elasticity as check_elasticity, finite as check_finite, growth as check_growth, hazard as check_hazard,
+    preference as check_preference, rate as check_rate,
+};
 pub use domain::Domain;
 pub use parts::Parts;
 
@@ -21,6 +27,7 @@ use gamma::Gamma;
 use horizon::ByFlow;
 use mixture::Mixture;
 use piecewise::{Flat, Piecewise};
+use years::Years;
 
 /// How the logarithm of the factor is computed.
 #[derive(Clone, Debug, PartialEq)]
@@ -28,6 +35,7 @@ enum Form {
     Flat(Flat),
     Lines(Piecewise),
     ByFlow(ByFlow),
+    Years(Years),
     Gamma(Gamma),
     Mixture(Mixture),
 }
@@ -39,6 +47,7 @@ impl Form {
             Form::Flat(flat) => flat.log2(t),
             Form::Lines(lines) => lines.log2(t),
             Form::ByFlow(horizon) => horizon.log2(t),
+            Form::Years(years) => years.log2(t),
             Form::Gamma(gamma) => gamma.log2(t),
             Form::Mixture(mixture) => mixture.log2(t),
         }
@@ -58,6 +67,7 @@ impl Form {
             Form::Flat(flat) => flat.instantaneous(),
             Form::Lines(lines) => lines.instantaneous(t),
             Form::ByFlow(horizon) => horizon.instantaneous(t),
+            Form::Years(years) => years.instantaneous(t),
             Form::Gamma(gamma) => gamma.instantaneous(t),
             Form::Mixture(mixture) => mixture.instantaneous(t),
         }
@@ -69,6 +79,7 @@ impl Form {
             Form::Flat(flat) => flat.instantaneous(),
             Form::Lines(lines) => lines.initial(),
             Form::ByFlow(horizon) => horizon.initial(),
+            Form::Years(years) => years.initial(),
             Form::Gamma(gamma) => gamma.instantaneous(0.0),
             Form::Mixture(mixture) => mixture.initial(),
         }
@@ -80,6 +91,7 @@ impl Form {
             Form::Flat(flat) => flat.falls(),
             Form::Lines(lines) => lines.falls(),
             Form::ByFlow(horizon) => horizon.bounded(),
+            Form::Years(years) => years.bounded(),
             Form::Gamma(_) => true,
             Form::Mixture(mixture) => mixture.components().iter().all(|(_, curve)| curve.bounded),
         }
@@ -132,18 +144,29 @@ impl Curve {
     /// length T); product over years of 1/((1+rho)(1+g)^eta) (Ramsey, exact); (1 + t s^2/m)^-(m^2/s^2) (gamma);
     /// sum of w_i D_i(t) (mixture); log-linear between given factors (table).
     ///
+    /// Where growth is uncertain, with rho preference and hazard, eta elasticity, m and s mean and standard deviation
+    /// of log growth: exp(-t(rho + eta m - eta^2 s^2/2)) where years are independent. Where growth persists by a share
+    /// phi from y_0 at the base, at whole years n, ln D(n) = -rho n - eta E + eta^2 V/2 with
+    /// E = n m + y_0 phi(1-phi^n)/(1-phi) and
+    /// V = s^2/(1-phi)^2 (n - 2 phi(1-phi^n)/(1-phi) + phi^2(1-phi^(2n))/(1-phi^2)), s being that of the yearly shock.
+    /// Where it switches between states by the chances P from the chances pi at the base,
+    /// D(n) = exp(-rho n) pi' (P M)^n 1 with M = diag(exp(-eta m_j + eta^2 s_j^2/2)). Both log-linear between years.
+    ///
     /// **Arguments**: `t`, offset in years from the base, within [`Curve::domain`]; fractions are allowed.
     ///
     /// **Returns**: the factor, a pure number, not rounded; exactly 1 at 0; 0 where it underflows.
     ///
-    /// **Conventions**: an edge belongs to the earlier band; before 0 the first rate extends backwards.
+    /// **Conventions**: an edge belongs to the earlier band; before 0 the first rate extends backwards; growth by
+    /// path or by chance is known from 0 on only.
     ///
     /// **Errors**: `NotFinite` for an offset that is NaN or infinite, or a factor too large for a double;
     /// `OutsideDomain` elsewhere, never an extrapolation.
     ///
     /// **Source**: for the declining schedules HM Treasury, "The Green Book", 2003, Annex 6; for gamma
     /// M. Weitzman, "Gamma discounting", American Economic Review 91, 2001; for the Ramsey rule F. Ramsey, "A
-    /// mathematical theory of saving", Economic Journal 38, 1928.
+    /// mathematical theory of saving", Economic Journal 38, 1928; for uncertain growth that persists or switches
+    /// C. Gollier, "Pricing the Planet's Future", 2013, ch. 3 to 5, from memory: both follow from the mean of a
+    /// log-normal variable, E exp(-eta x) = exp(-eta E x + eta^2 Var x/2).
     ///
     /// ```
     /// use hence_core::{Compounding, ErrorKind, Spec, Where};
@@ -263,10 +286,15 @@ impl Curve {
     }
 
     /// What a reader should be told of the curve, a sentence each: factors that jump up at an edge or rise, which
-    /// whole-horizon rates by flow can cause. Empty for most curves.
+    /// whole-horizon rates by flow and lasting uncertainty of growth can cause. Empty for most curves.
     pub fn warnings(&self) -> Vec<String> {
         match &self.form {
             Form::ByFlow(horizon) => horizon.warnings(),
+            Form::Years(years) if years.last_rate() < 0.0 => vec![format!(
+                "far factors rise: the forward rate tends to {} a year, continuously compounded, since uncertainty \
+                 of growth builds up over the years",
+                checks::percent(years.last_rate())
+            )],
             Form::Mixture(mixture) => {
                 mixture.components().iter().flat_map(|(_, curve)| curve.warnings()).collect()
             }

@@ -1,6 +1,7 @@
 //! What a curve is made of, for whoever rebuilds its factors by a second, independent route.
 
 use super::edges::Edges;
+use crate::{GrowthState, Persistence};
 
 /// The resolved make-up of a [`Curve`](crate::Curve): offsets instead of calendar years, rates instead of
 /// preference and growth, enough to recompute every factor without this library.
@@ -67,6 +68,34 @@ pub enum Parts {
         growth: Vec<f64>,
         /// Whether the last growth has no end.
         open: bool,
+    },
+    /// Log growth mean + y_n, y_n = phi y_(n-1) + a shock of standard deviation sd, from y_0 at the base: the continuous
+    /// rate of year n is rho + elasticity (mean + phi^n y_0) - elasticity^2 sd^2 ((1 - phi^n)/(1 - phi))^2 / 2.
+    PersistentGrowth {
+        /// Pure time preference and hazard together, continuous.
+        rho: f64,
+        /// Elasticity of marginal utility.
+        elasticity: f64,
+        /// Mean of log growth.
+        mean: f64,
+        /// Standard deviation of the yearly shock.
+        sd: f64,
+        /// phi and y_0.
+        persistence: Persistence,
+    },
+    /// exp(-rho n) times the sum of a row that begins as the chances at the base and is multiplied every year by the
+    /// transition and then by each state's exp(-elasticity mean + elasticity^2 sd^2/2); log-linear between years.
+    GrowthRegimes {
+        /// Pure time preference and hazard together, continuous.
+        rho: f64,
+        /// Elasticity of marginal utility.
+        elasticity: f64,
+        /// Log growth in each state.
+        states: Vec<GrowthState>,
+        /// The chances of passing from a state (row) to each state.
+        transition: Vec<Vec<f64>>,
+        /// The chances of each state at the base.
+        start: Vec<f64>,
     },
     /// (1 + t sd^2/mean)^-(mean^2/sd^2), continuous rates.
     Gamma {

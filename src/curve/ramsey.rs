@@ -24,6 +24,21 @@ impl Ramsey {
         self.rho.hi
     }
 
+    /// Preference and hazard together, to more digits than a double.
+    pub(super) fn rho_exactly(&self) -> Dd {
+        self.rho
+    }
+
+    pub(super) fn elasticity(&self) -> f64 {
+        self.elasticity
+    }
+
+    /// ln of the expected weight of a unit a year later, -eta m + eta^2 s^2/2 for log growth.
+    pub(super) fn log_factor(&self, mean: f64, sd: f64) -> Dd {
+        let spread = two_prod(self.elasticity, sd);
+        spread * spread * 0.5 - two_prod(self.elasticity, mean)
+    }
+
     /// rho + eta g.
     pub(super) fn linear(&self, growth: f64) -> Dd {
         self.rho + two_prod(self.elasticity, growth)

@@ -24,6 +24,11 @@ pub(super) struct Token {
 }
 
 impl Token {
+    /// Whether it is a number.
+    pub fn is_number(&self) -> bool {
+        matches!(self.kind, Kind::Number(_))
+    }
+
     /// The token as an error quotes it.
     pub fn found(&self) -> String {
         match &self.kind {

@@ -2,6 +2,8 @@
 
 mod clauses;
 mod cursor;
+mod distribution;
+mod figures;
 mod lexer;
 mod number;
 mod parser;
@@ -9,9 +11,10 @@ mod print;
 mod suggest;
 mod words;
 
+pub use figures::{parse_number, parse_percentage};
 pub(crate) use number::check_flat;
 pub use number::percent;
-pub(crate) use number::plain;
+pub(crate) use number::{plain, rounded_number, rounded_percent};
 pub use suggest::distance;
 pub(crate) use suggest::nearest;
 pub(crate) use words::{in_words, is_word};

@@ -57,6 +57,16 @@ pub(crate) fn plain(number: f64) -> String {
     (number + 0.0).to_string()
 }
 
+/// A rate rounded to so many decimals of a percent: the double that the shorter percentage reads back as.
+pub(crate) fn rounded_percent(rate: f64, decimals: u8) -> f64 {
+    of_percent(&move_point(&format!("{rate:.*}", usize::from(decimals) + 2), 2))
+}
+
+/// A number rounded to so many decimals.
+pub(crate) fn rounded_number(number: f64, decimals: u8) -> f64 {
+    of_decimal(&format!("{number:.*}", usize::from(decimals)))
+}
+
 /// Whether a yearly rate is allowed: above -50%, at most 100%.
 pub(crate) fn in_range(rate: f64) -> bool {
     rate > -0.5 && rate <= 1.0
@@ -119,6 +129,13 @@ mod tests {
         assert_eq!(of_percent("2.9"), 0.029);
         assert_eq!(percent(0.029), "2.9%");
         assert_eq!(percent(0.1 + 0.2), "30.000000000000004%");
+    }
+
+    #[test]
+    fn rounding_is_of_the_text() {
+        assert_eq!(rounded_percent(0.013_590_674, 2), 0.0136);
+        assert_eq!(percent(rounded_percent(-0.000_04, 2)), "0%");
+        assert_eq!(rounded_number(1.775_66, 2), 1.78);
     }
 
     #[test]

@@ -4,7 +4,7 @@ use super::cursor::{Parsed, Parser};
 use super::lexer::Kind;
 use super::number::{check_flat, in_range, of_decimal, of_percent, out_of_range};
 use super::{MAX_DEPTH, Positions, RateLine, percent, plain};
-use crate::{Band, Compounding, Edge, ErrorKind, Spec};
+use crate::{Band, Compounding, Edge, ErrorKind, Persistence, Spec};
 
 /// Edges from this number on are calendar years.
 const FIRST_YEAR: f64 = 1000.0;
@@ -50,7 +50,7 @@ struct Ramsey {
 
 enum Growth {
     Path(Vec<Band>),
-    Uncertain { mean: f64, sd: f64, log: bool, persistence: Option<f64> },
+    Uncertain { mean: f64, sd: f64, log: bool, persistence: Option<Persistence> },
 }
 
 impl Parser {
@@ -306,7 +306,7 @@ impl Parser {
             self.one_of(&["sd"])?;
             let sd = self.percent()?;
             let persistence = if log && self.word("persistence") {
-                Some(self.decimal("a number from -1 to 1")?)
+                Some(Persistence { phi: self.decimal("a number between -1 and 1")?, start: 0.0 })
             } else {
                 None
             };

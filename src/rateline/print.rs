@@ -1,6 +1,6 @@
 //! The canonical rate line of a curve.
 use super::{Positions, percent, plain};
-use crate::{Band, Compounding, Edge, HorizonRule, Spec};
+use crate::{Band, Compounding, Edge, GrowthState, HorizonRule, Persistence, Spec};
 use std::fmt;
 
 /// "", or the timing clauses with the `; ` before them.
@@ -45,8 +45,8 @@ fn preferences(preference: f64, hazard: f64, elasticity: f64) -> String {
 }
 
 impl fmt::Display for Spec {
-    /// The canonical rate line: it parses back to the same curve, unless the curve is or holds a table, which no
-    /// line can state, or its parameters are outside what a line may say.
+    /// The canonical rate line: it parses back to the same curve, unless the curve is or holds one that no line can
+    /// state ([`Spec::fits_a_line`]), or its parameters are outside what a line may say.
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         let continuous = |compounding: &Compounding, words| match compounding {
             Compounding::Yearly => "",
@@ -88,11 +88,20 @@ impl fmt::Display for Spec {
                 let start = preferences(*preference, *hazard, *elasticity);
                 let log_word = if *log { "log " } else { "" };
                 write!(f, "{start}, {log_word}growth {} sd {}", percent(*mean), percent(*sd))?;
-                if let Some(persistence) = persistence {
-                    write!(f, " persistence {}", plain(*persistence))?;
+                if let Some(Persistence { phi, start }) = persistence {
+                    write!(f, " persistence {}", plain(*phi))?;
+                    if *start != 0.0 {
+                        write!(f, " from a departure of {}", percent(*start))?;
+                    }
                 }
                 // Log growth is continuous without saying so.
                 f.write_str(if *log { "" } else { continuous(compounding, "; continuous") })
+            }
+            Spec::GrowthRegimes { preference, hazard, elasticity, states, .. } => {
+                let start = preferences(*preference, *hazard, *elasticity);
+                let one = |state: &GrowthState| format!("{} sd {}", percent(state.mean), percent(state.sd));
+                let states: Vec<String> = states.iter().map(one).collect();
+                write!(f, "{start}, log growth in states {}", states.join(" and "))
             }
             Spec::Gamma { mean, sd } => write!(f, "gamma mean {} sd {}", percent(*mean), percent(*sd)),
             Spec::Mixture(parts) => {

@@ -1,6 +1,6 @@
 //! A curve in words, for reports.
 use super::{percent, plain};
-use crate::{Band, Compounding, Edge, HorizonRule, Spec};
+use crate::{Band, Compounding, Edge, GrowthState, HorizonRule, Persistence, Spec};
 
 /// The words of the grammar, so that a mistyped one is not taken for the id of a schedule.
 const WORDS: [&str; 27] = [
@@ -32,6 +32,9 @@ const WORDS: [&str; 27] = [
     "sd",
     "start",
 ];
+
+/// How growth that is not the same every year is meant within a year.
+const BETWEEN_YEARS: &str = "factors at whole years, log-linear between";
 
 /// Whether a word belongs to the grammar, or is near enough to one that does to be meant.
 pub(crate) fn is_word(word: &str) -> bool {
@@ -84,7 +87,13 @@ pub(crate) fn in_words(spec: &Spec) -> String {
         Spec::UncertainGrowth { preference, hazard, elasticity, mean, sd, log, persistence, compounding } => {
             let what = if *log { "log growth" } else { "growth" };
             let persistence = persistence.map_or(", independent from year to year".into(), |persistence| {
-                format!(" and a persistence of {}", plain(persistence))
+                let Persistence { phi, start } = persistence;
+                let departure = if start == 0.0 {
+                    String::new()
+                } else {
+                    format!(", growth departing from its mean by {} at the base", percent(start))
+                };
+                format!(" of the yearly shock, and a persistence of {}{departure}; {BETWEEN_YEARS}", plain(phi))
             });
             let continuous = if *log || *compounding == Compounding::Continuous {
                 ", continuously compounded"
@@ -94,6 +103,25 @@ pub(crate) fn in_words(spec: &Spec) -> String {
             format!(
                 "the Ramsey rule with {}, uncertain {what} of mean {} and standard deviation {}{persistence}{continuous}",
                 preferences(*preference, *hazard, *elasticity), percent(*mean), percent(*sd),
+            )
+        }
+        Spec::GrowthRegimes { preference, hazard, elasticity, states, transition, start } => {
+            let one = |(i, state): (usize, &GrowthState)| {
+                let stay = transition.get(i).and_then(|row| row.get(i)).copied().unwrap_or_default();
+                let chance = start.get(i).copied().unwrap_or_default();
+                format!(
+                    "mean {} and standard deviation {} (chance {} at the base, {} to stay for another year)",
+                    percent(state.mean),
+                    percent(state.sd),
+                    percent(chance),
+                    percent(stay)
+                )
+            };
+            format!(
+                "the Ramsey rule with {}, log growth in {} states: {}; {BETWEEN_YEARS}, continuously compounded",
+                preferences(*preference, *hazard, *elasticity),
+                states.len(),
+                states.iter().enumerate().map(one).collect::<Vec<_>>().join("; ")
             )
         }
         Spec::Gamma { mean, sd } => format!(

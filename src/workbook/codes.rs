@@ -166,6 +166,7 @@ pub const CODES: &[Code] = codes! {
         "whole-range": "A name covers a whole row or column, headings too.",
     }
     Settings {
+        "base-differs": "Options have different base years, so that their values do not compare.",
         "base-kind": "A year and the base are of different kinds, so there is no offset between them.",
         "base-value": "The base is not a year, a financial year or a date.",
         "base-years": "The base does not go with the years as they are written.",
@@ -188,8 +189,11 @@ pub const CODES: &[Code] = codes! {
         "income": "An income is 0 or negative.",
         "income-reference": "Incomes of groups are given without the income that counts once, or that without groups.",
         "no-basis-cell": "No cell states the basis, so a new one stands on the audit sheets alone.",
+        "not-drawn": "A stream on a basis of its own keeps it in every draw.",
         "not-marginal": "A project is not small against consumption, and its exact value is more than 1% from the marginal method's.",
+        "nothing-uncertain": "Every part of the rate to be drawn is one value, so that all draws are the same.",
         "one-cell": "A setting covers several cells, where one is allowed.",
+        "part-missing": "A part of the rate to be drawn is given neither with the run nor by the workbook's basis.",
         "price-basis": "The text does not say which prices the flows are in, or asks for a conversion that nothing gives.",
         "price-index": "A level of the price index is blank, 0 or negative.",
         "price-rate": "A rate of inflation or of price growth lies outside -50% to 100%.",
@@ -197,6 +201,8 @@ pub const CODES: &[Code] = codes! {
         "price-year": "The year of the prices has no place among the years, or no level in the index.",
         "prices-differ": "A nominal rate stands on real flows, or a real rate on nominal ones.",
         "prices-unstated": "The schedule records whether its rates are real, and the workbook does not say it of its flows.",
+        "series-gap": "A series that growth is estimated from has a blank cell.",
+        "series-shape": "A series that growth is estimated from is not one row or column, or two with the years first.",
         "signs": "The text does not say which flows are negative.",
         "text-expected": "A setting holds a number or another value, where a text is allowed.",
         "timing-differs": "The timing cell and the basis give different timings; the cell counts.",
@@ -296,6 +302,6 @@ pub const CODES: &[Code] = codes! {
         "syntax": "A text, such as a rate line, does not follow its grammar.",
         "unknown-schedule": "No schedule of that id is known.",
         "unsupported": "This version does not offer what was asked for.",
-        "weights": "The weights of a mixture do not sum to 1, or one is negative.",
+        "weights": "Weights, or chances, do not sum to 1 as they should, or one is negative.",
     }
 };

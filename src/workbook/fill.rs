@@ -6,8 +6,9 @@ use std::path::Path;
 use hence_core::{Basis, Catalogue, Compounding, Spec};
 use sha2::{Digest, Sha256};
 
-use crate::appraisal::{Appraisal, Given, Setting, Stated};
+use crate::appraisal::{Appraisal, Covered, Given, Setting, Stated};
 use crate::companions::companions;
+use crate::compare::sensitivity;
 use crate::follow;
 use crate::graft::{Graft, graft};
 use crate::layout::Layout;
@@ -41,6 +42,8 @@ pub struct FillRequest {
     pub formulas: bool,
     /// Formulas found in targets are replaced, not compared.
     pub replace_formulas: bool,
+    /// Rate lines or ids of schedules to value it on besides, for the sensitivity sheet.
+    pub against: Vec<String>,
     /// For the audit summary.
     pub as_of: Option<String>,
     /// For the audit summary.
@@ -55,6 +58,7 @@ impl Default for FillRequest {
             roles: Vec::new(),
             formulas: true,
             replace_formulas: false,
+            against: Vec::new(),
             as_of: None,
             by: None,
         }
@@ -121,6 +125,8 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     let (outcomes, found) = value(&appraisal, catalogue)?;
     problems.extend(found);
     let companions = companions(&appraisal, &outcomes, catalogue, &mut problems);
+    let sensitivity = sensitivity(&appraisal, &outcomes, &request.against, catalogue)?;
+    problems.extend(sensitivity.comparison.problems.iter().cloned());
     let names = SheetNames::choose(&foreign_sheets(&book, &previous));
     let layout = Layout::new(&appraisal, &outcomes, &names);
 
@@ -174,6 +180,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         changes: &plan.changes,
         problems: &problems,
         companions: &companions,
+        sensitivity: &sensitivity,
         carried: &carried,
         differs: &differs(),
     };
@@ -215,16 +222,20 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     Ok(Filled { bytes, report })
 }
 
-/// Rows of numbers along the years that no role names: heading and cells.
-pub(crate) fn not_valued(appraisal: &Appraisal) -> Vec<String> {
-    let rows = appraisal.coverage.iter().filter(|row| row.roles.is_empty() && !row.follows);
-    rows.map(|row| match row.heading.as_str() {
-        "" => row.at.to_string(),
-        heading => format!("{heading} ({})", row.at),
-    })
-    .collect()
+/// Rows of numbers along the years that no role names.
+pub(crate) fn rows_not_valued(appraisal: &Appraisal) -> impl Iterator<Item = &Covered> {
+    appraisal.coverage.iter().filter(|row| row.roles.is_empty() && !row.follows)
 }
 
+/// The same in words: heading and cells.
+pub(crate) fn not_valued(appraisal: &Appraisal) -> Vec<String> {
+    rows_not_valued(appraisal)
+        .map(|row| match row.heading.as_str() {
+            "" => row.at.to_string(),
+            heading => format!("{heading} ({})", row.at),
+        })
+        .collect()
+}
 /// The sheets with what is written into them.
 fn patch(
     changes: &mut Changes,

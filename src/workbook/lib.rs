@@ -6,10 +6,15 @@
 mod adjust;
 pub mod appraisal;
 mod baseline;
+pub mod brief;
 pub mod check;
 mod clock;
 pub mod codes;
 mod companions;
+pub mod compare;
+pub mod dated;
+mod drawing;
+pub mod draws;
 pub mod fill;
 mod follow;
 pub mod formulas;

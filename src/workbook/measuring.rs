@@ -93,7 +93,7 @@ impl Moments {
 }
 
 /// Sums of flows at one offset, in order; offsets that differ by rounding alone are one.
-fn merged(list: &[(f64, f64)]) -> (Vec<f64>, Vec<f64>) {
+pub(crate) fn merged(list: &[(f64, f64)]) -> (Vec<f64>, Vec<f64>) {
     let mut at: BTreeMap<i64, (f64, Vec<f64>)> = BTreeMap::new();
     for (t, x) in list {
         let entry = at.entry((t * 1e6).round() as i64).or_insert((*t, Vec::new()));

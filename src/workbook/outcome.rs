@@ -3,6 +3,8 @@
 use crate::appraisal::Given;
 use hence_core::{Basis, Curve, Payback, Timing, sum};
 
+use crate::dated::Flows;
+
 /// What one stream comes to.
 #[derive(Clone, Debug, PartialEq)]
 pub struct StreamOutcome {
@@ -86,6 +88,8 @@ pub struct ChoiceOutcome {
     pub streams: Vec<StreamOutcome>,
     /// Net flow of each year (benefits and flows less costs and damages).
     pub net: Vec<f64>,
+    /// The same one by one as they are dated, those that follow the last year included.
+    pub dated: Flows,
     /// N of the annual equivalent.
     pub service_years: u32,
     /// Sum of the factors of service years 1 to N.

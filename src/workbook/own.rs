@@ -148,8 +148,15 @@ fn has_comments(package: &Package, part: &str) -> Result<bool> {
 
 /// The new sheet that takes the notes of an old one; of a renamed one, the summary.
 fn kind_of(old: &str, names: &SheetNames) -> String {
-    let all =
-        [&names.discounting, &names.summary, &names.coverage, &names.checks, &names.changes, &names.charts];
+    let all = [
+        &names.discounting,
+        &names.summary,
+        &names.coverage,
+        &names.checks,
+        &names.sensitivity,
+        &names.changes,
+        &names.charts,
+    ];
     let stem = |name: &str| name.trim_end_matches(|c: char| c.is_ascii_digit() || c == ' ').to_lowercase();
     all.into_iter().find(|name| stem(name) == stem(old)).unwrap_or(&names.summary).clone()
 }

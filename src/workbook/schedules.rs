@@ -2,12 +2,19 @@
 
 use std::path::Path;
 
+use chrono::Datelike;
 use hence_core::Catalogue;
 
 use crate::problem::{Place, Problem, Result};
 
 /// A schedule file larger than this is not one.
 const MAX_SCHEDULE_BYTES: u64 = 1 << 20;
+
+/// The calendar year (UTC) so many seconds after the start of 1970, by which a new schedule is cited.
+pub fn year_of(seconds: u64) -> i32 {
+    let time = i64::try_from(seconds).ok().and_then(|seconds| chrono::DateTime::from_timestamp(seconds, 0));
+    time.map_or(9999, |time| time.year())
+}
 
 /// Built-in schedules, with those of `folder` (every `*.toml`) before them.
 pub fn catalogue(folder: Option<&Path>) -> Result<Catalogue> {
@@ -33,4 +40,16 @@ pub fn catalogue(folder: Option<&Path>) -> Result<Catalogue> {
     }
     texts.sort();
     Catalogue::builtin().with(&texts).map_err(|e| crate::valuation::from_core(&e, Place::name(&shown)).into())
+}
+
+#[cfg(test)]
+mod tests {
+    use super::year_of;
+
+    #[test]
+    fn years_end_with_their_last_second() {
+        // 2000-01-01T00:00:00Z is 946,684,800 seconds after the start of 1970.
+        assert_eq!((year_of(0), year_of(946_684_799), year_of(946_684_800)), (1970, 1999, 2000));
+        assert_eq!(year_of(u64::MAX), 9999);
+    }
 }

@@ -9,6 +9,7 @@ use crate::adjust;
 use crate::appraisal::{Appraisal, Axis, COMMAND_LINE, Choice, Label, Stream, StreamKind};
 use crate::baseline::{increment, warn_baseline, warn_unequal_lives};
 use crate::clock::{Clock, base_words, base_year, label_words, sentence};
+use crate::dated;
 use crate::measuring::{Further, Moments, measure_gross, measure_net, measure_units};
 use crate::outcome::{ChoiceOutcome, OwnBasis, StreamOutcome, Totals};
 use crate::problem::{Place, Problem, Result, WorkbookError};
@@ -221,6 +222,7 @@ fn value_choice(
         npv_per_budget: None,
         effects: Vec::new(),
         net,
+        dated: dated::flows(choice, axis, &clock, &streams)?,
         streams,
         factors,
         basis,
@@ -290,7 +292,7 @@ fn yearly_rate(curve: &Curve, t: f64) -> Option<f64> {
 }
 
 /// The base year from which the end of a tail counts: where years are dates, such that the end is a year of theirs.
-fn tail_base(labels: &[Label], clock: &Clock, choice: &Choice) -> Option<i32> {
+pub(crate) fn tail_base(labels: &[Label], clock: &Clock, choice: &Choice) -> Option<i32> {
     match (labels.last(), clock.years.last()) {
         (Some(Label::Date(date)), Some(years)) => Some(chrono::Datelike::year(date) - years.ceil() as i32),
         _ => base_year(&choice.base.value),

@@ -53,6 +53,10 @@ pub enum Style {
     Offset,
     /// A rate, as a percentage.
     Rate,
+    /// A switching value, as a percentage with four decimals.
+    Percent,
+    /// A switching value that is no percentage, with four decimals.
+    Value,
     /// A share, as a percentage without decimals.
     Share,
     /// A discount factor.
@@ -125,6 +129,8 @@ impl Style {
             Style::Date => "yyyy\\-mm\\-dd",
             Style::Offset => "0.0##",
             Style::Rate => "0.00%",
+            Style::Percent => "0.0000%",
+            Style::Value => "0.0000",
             Style::Share => "0%",
             Style::Factor => "0.000000",
             Style::Money | Style::Total if decimals => "#,##0.00;\\-#,##0.00;0.00",
@@ -299,6 +305,14 @@ pub fn package(sheets: &[Sheet], names: &[(&str, &str)]) -> Result<Vec<u8>> {
     written.map_err(|e| failed("the audit sheets cannot be written", &e))?;
     closed.map_err(|e| unwritten("the audit sheets cannot be written", &e))?;
     std::fs::read(path).map_err(|e| unwritten("the audit sheets cannot be read back", &e))
+}
+
+/// Writes the sheets as a workbook to be opened as it is, the same bytes every time.
+///
+/// # Errors
+/// As [`package`].
+pub fn workbook(sheets: &[Sheet]) -> Result<Vec<u8>> {
+    form::unstamped(package(sheets, &[])?)
 }
 
 fn failed(what: &str, why: &dyn std::fmt::Display) -> crate::problem::WorkbookError {

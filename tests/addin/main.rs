@@ -1,7 +1,11 @@
 //! The add-ins: the function table, a real LibreOffice, and a stand-in host for Excel under Wine.
 
+mod calc;
+mod excel;
 mod functions;
 mod table;
+#[path = "../wine.rs"]
+mod wine;
 
 use std::path::{Path, PathBuf};
 

@@ -28,13 +28,19 @@ fn the_readme_has_every_function() {
     sections::compare(&root().join("README.md"), &[("functions", table)]);
 }
 
+/// The header documents each C symbol, and names the function that cells call for it.
 #[test]
 fn every_symbol_is_in_the_header() {
     let header = std::fs::read_to_string(root().join("include/hence.h")).expect("include/hence.h");
     for function in FUNCTIONS {
-        let symbol = function.symbol;
-        assert!(header.contains(&format!("{symbol}(")), "{} names {symbol}", function.name);
+        let declaration = format!("int32_t {}(", function.symbol);
+        let (before, _) =
+            header.split_once(&declaration).unwrap_or_else(|| panic!("{declaration} is missing"));
+        let comment = before.rsplit("\n\n").next().unwrap_or_default();
+        let said = format!("// In cells: {}.", function.full_name());
+        assert!(comment.contains(&said), "{declaration} lacks: {said}");
     }
+    assert_eq!(header.matches("// In cells: ").count(), FUNCTIONS.len());
 }
 
 /// The same text works in both programs: letters after one dot, never shaped like a cell, and arguments that may be

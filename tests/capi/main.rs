@@ -1,81 +1,13 @@
-//! The C interface: header drift, and the header compiled alone by C and C++ compilers.
+//! The C interface as C sees it: header, symbols, layout, abuse, threads, and the reference rows.
 
-use std::path::{Path, PathBuf};
-use std::process::Command;
-
-fn root() -> PathBuf {
-    Path::new(env!("CARGO_MANIFEST_DIR")).join("..")
-}
-
-fn generated() -> String {
-    let config = cbindgen::Config::from_file(root().join("ffi/cbindgen.toml")).expect("ffi/cbindgen.toml");
-    let mut text = Vec::new();
-    cbindgen::Builder::new()
-        .with_config(config)
-        .with_crate(root().join("ffi"))
-        .generate()
-        .expect("cbindgen reads the crate")
-        .write(&mut text);
-    String::from_utf8(text).expect("a header is text")
-}
-
-/// `HENCE_ACCEPT=1` writes the new header and fails on purpose, so that an accepting run is never taken for a passing one.
-#[test]
-fn the_header_is_that_of_the_source() {
-    let path = root().join("include/hence.h");
-    let held = std::fs::read_to_string(&path).unwrap_or_default();
-    let made = generated();
-    if std::env::var_os("HENCE_ACCEPT").is_some() {
-        std::fs::write(&path, &made).expect("include/hence.h is writable");
-        panic!("include/hence.h was accepted: look at the difference, then run again without HENCE_ACCEPT");
-    }
-    assert!(held == made, "include/hence.h differs from the source: run once with HENCE_ACCEPT=1 and look");
-}
-
-#[test]
-fn every_function_is_in_the_header() {
-    let header = generated();
-    for name in [
-        "hence_abi_version",
-        "hence_basis_describe",
-        "hence_basis_free",
-        "hence_basis_parse",
-        "hence_factors",
-        "hence_forward_rates",
-        "hence_mean_rates",
-        "hence_present_value",
-        "hence_ramsey_rate",
-        "hence_status_name",
-    ] {
-        assert!(header.contains(&format!("{name}(")), "{name} is missing");
-    }
-    for constant in ["HENCE_ABI_VERSION 1", "HENCE_OK 0", "HENCE_ERR_INTERNAL 90"] {
-        assert!(header.contains(&format!("#define {constant}")), "{constant} is missing");
-    }
-}
-
-/// Compiled alone and twice, pedantic warnings as errors.
-#[test]
-fn the_header_compiles_as_c_and_cpp() {
-    let folder = tempfile::tempdir().expect("a temporary folder");
-    for (compiler, standard, file) in [("cc", "c99", "t.c"), ("cc", "c11", "t.c"), ("c++", "c++17", "t.cc")] {
-        if compiler == "c++" && Command::new("c++").arg("--version").output().is_err() {
-            println!("no C++ compiler here: the header was not compiled as {standard}");
-            continue;
-        }
-        let source = folder.path().join(file);
-        let text = "#include \"hence.h\"\n#include \"hence.h\"\n\
-                    int main(void) { return hence_abi_version() == HENCE_ABI_VERSION ? 0 : 1; }\n";
-        std::fs::write(&source, text).expect("the source is writable");
-        let output = Command::new(compiler)
-            .arg(format!("-std={standard}"))
-            .args(["-Wall", "-Wextra", "-Werror", "-pedantic", "-c", "-o"])
-            .arg(folder.path().join("t.o"))
-            .arg("-I")
-            .arg(root().join("include"))
-            .arg(&source)
-            .output()
-            .expect("the C compiler runs");
-        assert!(output.status.success(), "{standard}: {}", String::from_utf8_lossy(&output.stderr));
-    }
-}
+mod abuse;
+mod examples;
+mod header;
+mod install;
+mod layout;
+mod library;
+mod loaded;
+mod readme;
+mod reference;
+mod symbols;
+mod threads;

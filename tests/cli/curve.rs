@@ -82,6 +82,43 @@ fn json_is_one_document() {
     assert!((document["rows"][1]["factor"].as_f64().unwrap() - 1.0 / 1.035).abs() < 1e-15);
 }
 
+/// Two rates at even odds: three forms of one certainty-equivalent rate, each labelled with what it is.
+#[test]
+fn the_forms_of_a_rate_are_labelled() {
+    let line = "0.5 of (1% continuous), 0.5 of (7% continuous)";
+    let text = stdout(&run(&["curve", line, "--at", "100"]));
+    for part in [
+        "forward_rate: of the year that ends at t, compounded yearly",
+        "mean_rate: from the base to t, compounded yearly",
+        "instantaneous_rate: at t, compounded continuously",
+    ] {
+        assert!(text.contains(part), "{part} is missing from:\n{text}");
+    }
+    let document: serde_json::Value =
+        serde_json::from_str(&stdout(&run(&["curve", line, "--at", "100", "--json"]))).expect("JSON");
+    let (low, high) = ((-1.0f64).exp(), (-7.0f64).exp());
+    let expected = (0.01 * low + 0.07 * high) / (low + high);
+    let found = document["rows"][0]["instantaneous_rate"].as_f64().unwrap();
+    assert!((found - expected).abs() < 1e-16, "{found} and {expected}");
+}
+
+#[test]
+fn growth_in_states_comes_from_a_schedule_file() {
+    let folder = tempfile::tempdir().unwrap();
+    let text = "id = \"ostrey-states\"\ntitle = \"Growth in two states\"\nbody = \"Ostrey Rivers Board\"\n\
+                year = 2026\nplace = \"rule 5\"\naddress = \"\"\nstatus = \"current\"\ncomplete = true\n\
+                checked = \"an invented body\"\n[regimes]\npreference = 0.01\nelasticity = 2\n\
+                states = [{ mean = 0.03, sd = 0 }, { mean = -0.01, sd = 0 }]\n\
+                transition = [[0.9, 0.1], [0.5, 0.5]]\nstart = [1, 0]\n";
+    std::fs::write(folder.path().join("states.toml"), text).unwrap();
+    let dir = folder.path().to_str().unwrap();
+    let rows = csv(&["ostrey-states", "--schedules", dir, "--at", "1"]);
+    let expected = (0.9 * (-0.06f64).exp() + 0.1 * 0.02f64.exp()) * (-0.01f64).exp();
+    assert!((rows[0][1] - expected).abs() < 1e-15);
+    let shown = stdout(&run(&["curve", "ostrey-states", "--schedules", dir, "--at", "1"]));
+    assert!(shown.contains("log growth in 2 states: mean 3%"), "{shown}");
+}
+
 #[cfg(unix)]
 #[test]
 fn a_broken_pipe_ends_quietly() {

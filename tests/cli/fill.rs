@@ -341,3 +341,38 @@ fn schedules_of_ones_own_are_used() {
     assert_eq!(code(&output), 0, "{}", stderr(&output));
     assert!(stdout(&output).contains("Rules for works on the Ostrey"), "{}", stdout(&output));
 }
+
+/// Works of 1000 in 2026, benefits of 600 in 2027 and 2028, where growth persists or switches, by hand.
+#[test]
+fn growth_that_persists_or_switches_is_filled_and_checked() {
+    let folder = tempfile::tempdir().unwrap();
+    let states = "id = \"ostrey-states\"\ntitle = \"Growth in two states\"\nbody = \"Ostrey Rivers Board\"\n\
+                  year = 2026\nplace = \"rule 5\"\naddress = \"\"\nstatus = \"current\"\ncomplete = true\n\
+                  checked = \"an invented body\"\n[regimes]\npreference = 0.01\nelasticity = 2\n\
+                  states = [{ mean = 0.03, sd = 0 }, { mean = -0.01, sd = 0 }]\n\
+                  transition = [[0.9, 0.1], [0.5, 0.5]]\nstart = [1, 0]\n";
+    std::fs::write(folder.path().join("states.toml"), states).unwrap();
+    let dir = folder.path().to_str().unwrap();
+    // Shocks of 3.6% weigh 1 in year 1 and 1.7 in year 2.
+    let caution: f64 = 4.0 * 0.036 * 0.036 / 2.0;
+    let persistent = [(-0.05 + caution).exp(), (-0.1 + caution * (1.0 + 1.7 * 1.7)).exp()];
+    let (boom, slump) = ((-0.06f64).exp(), 0.02f64.exp());
+    let (a, b) = (0.9 * boom, 0.1 * slump);
+    let switching = [
+        (a + b) * (-0.01f64).exp(),
+        ((a * 0.9 + b * 0.5) * boom + (a * 0.1 + b * 0.5) * slump) * (-0.02f64).exp(),
+    ];
+    let line = "preference 1%, elasticity 2, log growth 2% sd 3.6% persistence 0.7";
+    for (basis, [first, second]) in [(line, persistent), ("ostrey-states", switching)] {
+        let book = plan(&[("B4", basis)]);
+        let output = run(&["fill", book.arg(), "--schedules", dir, "--json"]);
+        assert_eq!(code(&output), 0, "{}", stderr(&output));
+        let document: serde_json::Value = serde_json::from_str(&stdout(&output)).expect("JSON");
+        let npv = document["books"][0]["options"][0]["npv"].as_f64().unwrap();
+        assert!((npv - (600.0 * (first + second) - 1000.0)).abs() < 1e-9, "{basis}: {npv}");
+        let audited = book.beside_arg("plan.audited.xlsx");
+        let check = run(&["check", &audited, "--schedules", dir]);
+        assert_eq!(code(&check), 0, "{}", stdout(&check));
+        assert!(!holds(&book.beside("plan.audited.xlsx"), "ot independently checked: a basis"));
+    }
+}

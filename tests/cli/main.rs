@@ -1,17 +1,22 @@
 //! The command line as a user meets it: a spawned program, its streams and its exit status.
 
 mod books;
+mod brief;
 mod check;
+mod compare;
 mod curve;
+mod draws;
 mod errors;
 mod fill;
 mod help;
 mod names;
 mod outputs;
+mod rate;
 mod readme;
 mod schedules;
 mod start;
 mod targets;
+mod windows;
 
 use std::io::Write;
 use std::path::{Path, PathBuf};

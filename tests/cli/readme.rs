@@ -90,7 +90,8 @@ fn every_command_shown_exists_with_its_options() {
 
 #[test]
 fn every_option_named_exists() {
-    let commands = ["fill", "check", "curve", "schedules", "names", "start"];
+    let commands =
+        ["fill", "brief", "check", "compare", "curve", "draws", "names", "rate", "schedules", "start"];
     let known: BTreeSet<String> = commands.into_iter().flat_map(options_of).collect();
     let text = readme();
     let spans = spans(&text);

@@ -4,7 +4,7 @@
 //! curves and by other routes than the library's: products over bands, weighted sums, powers.
 
 use crate::exact::{Big, Worst, big, continuous, yearly};
-use hence_core::{Band, Compounding, Curve, Edge, HorizonRule, Spec, Where};
+use hence_core::{Band, Compounding, Curve, Edge, GrowthState, HorizonRule, Persistence, Spec, Where};
 
 const RATES: [f64; 20] = [
     -0.4999, -0.3, -0.1, -0.01, -1e-9, 0.0, 1e-12, 1e-4, 0.0086, 0.01, 0.014, 0.02, 0.035, 0.0325, 0.07, 0.1,
@@ -217,6 +217,136 @@ fn uncertain_growth_factors() {
         }
     }
     worst.report(1500);
+}
+
+/// Log-linear between the whole years n of `log_factor`, which holds ln D(n).
+fn between_years(log_factor: &[Big], t: f64) -> Big {
+    let n = t.floor() as usize;
+    let (before, after) = (log_factor[n].clone(), &log_factor[n + 1]);
+    let step = after - &before;
+    (before + step * (big(t) - big(t.floor()))).exp()
+}
+
+/// ln D(n) by the closed form of the design, n from 0 to 1001.
+fn persistent(rho: &Big, eta: f64, mean: f64, sd: f64, persistence: Persistence) -> Vec<Big> {
+    let (one, two) = (big(1.0), big(2.0));
+    let (eta, phi) = (big(eta), big(persistence.phi));
+    let rest = one.clone() - &phi;
+    let mut power = one.clone(); // phi^n
+    let log_factor = (0..=1001).map(|n| {
+        let n = big(f64::from(n));
+        let gone = one.clone() - &power;
+        let mean = n.clone() * big(mean) + big(persistence.start) * &phi * &gone / &rest;
+        let sum = n.clone() - two.clone() * &phi * &gone / &rest
+            + phi.clone() * &phi * (one.clone() - power.clone() * &power)
+                / (one.clone() - phi.clone() * &phi);
+        let variance = big(sd) * big(sd) / (rest.clone() * &rest) * sum;
+        power *= &phi;
+        eta.clone() * &eta * variance / &two - eta.clone() * mean - rho.clone() * n
+    });
+    log_factor.collect()
+}
+
+#[test]
+fn persistent_growth_factors() {
+    let mut worst = Worst::new("persistent growth", 2.0);
+    let mut rates = Worst::new("rates under persistent growth", 2.0);
+    let phis = [-0.999_999, -0.6, -1e-9, 0.0, 1e-5, 0.3, 0.7, 0.95, 0.999, 0.999_999, 1.0 - 1e-12];
+    for (k, phi) in phis.into_iter().enumerate() {
+        for (preference, elasticity, mean, sd, start) in
+            [(0.01, 2.0, 0.02, 0.036, 0.0), (0.0, 1.3, 0.017, 0.001, -0.05), (0.03, 0.5, -0.004, 1e-4, 0.3)]
+        {
+            let persistence = Persistence { phi, start };
+            let spec = Spec::UncertainGrowth {
+                preference,
+                hazard: 0.001,
+                elasticity,
+                mean,
+                sd,
+                log: true,
+                persistence: Some(persistence),
+                compounding: Compounding::Continuous,
+            };
+            let rho = big(preference) + big(0.001);
+            let log_factor = persistent(&rho, elasticity, mean, sd, persistence);
+            factors(&mut worst, &spec, &offsets(), |t| between_years(&log_factor, t));
+            let curve = made(&spec);
+            for n in [1, 2, 30 + k, 1000] {
+                let t = n as f64;
+                let step = log_factor[n - 1].clone() - &log_factor[n];
+                if let Ok(forward) = curve.forward_rate(t) {
+                    rates.compare(forward, &step.clone().exp_m1(), || format!("{spec:?} at {n}"));
+                }
+                let found = curve.instantaneous_rate(t).unwrap();
+                rates.compare(found, &step, || format!("instantaneous, {spec:?} at {n}"));
+                let mean = -(log_factor[n].clone() / big(t));
+                let found = curve.mean_rate_continuous(t).unwrap();
+                rates.compare(found, &mean, || format!("mean, {spec:?} at {n}"));
+            }
+        }
+    }
+    worst.report(2500);
+    rates.report(350);
+}
+
+#[test]
+fn growth_regime_factors() {
+    let mut worst = Worst::new("growth regimes", 2.0);
+    let state = |mean, sd| GrowthState { mean, sd };
+    let third = 1.0 / 3.0;
+    let sets = [
+        (
+            vec![state(0.025, 0.02), state(-0.01, 0.04)],
+            vec![vec![0.95, 0.05], vec![0.3, 0.7]],
+            vec![1.0, 0.0],
+        ),
+        // Growth that stays what it is for ever, and a state that is left for good.
+        (vec![state(0.01, 0.0), state(0.03, 0.0)], vec![vec![1.0, 0.0], vec![0.0, 1.0]], vec![0.5, 0.5]),
+        (vec![state(-0.4, 0.3), state(0.02, 0.01)], vec![vec![0.0, 1.0], vec![0.0, 1.0]], vec![0.9, 0.1]),
+        (
+            vec![state(0.02, 0.01), state(0.1, 0.2), state(-0.05, 0.1)],
+            vec![vec![third, third, third], vec![0.1, 0.2, 0.7], vec![0.25, 0.5, 0.25]],
+            vec![0.2, 0.3, 0.5],
+        ),
+    ];
+    for (states, transition, start) in sets {
+        for (preference, elasticity) in [(0.01, 2.0), (0.0, 0.7), (0.05, 20.0)] {
+            let spec = Spec::GrowthRegimes {
+                preference,
+                hazard: 0.002,
+                elasticity,
+                states: states.clone(),
+                transition: transition.clone(),
+                start: start.clone(),
+            };
+            // The row of chances year by year, each divided by its own sum as stored.
+            let of_one = |row: &[f64]| {
+                let sum = row.iter().fold(big(0.0), |sum, &chance| sum + big(chance));
+                row.iter().map(|&chance| big(chance) / &sum).collect::<Vec<Big>>()
+            };
+            let eta = big(elasticity);
+            let rho = big(preference) + big(0.002);
+            let factor = |state: &GrowthState| {
+                let spread = eta.clone() * big(state.sd);
+                continuous(&(eta.clone() * big(state.mean) - spread.clone() * spread / big(2.0)), &big(1.0))
+            };
+            let weight: Vec<Big> = states.iter().map(factor).collect();
+            let rows: Vec<Vec<Big>> = transition.iter().map(|row| of_one(row)).collect();
+            let mut row = of_one(&start);
+            let mut log_factor = vec![big(0.0)];
+            for n in 1..=1001 {
+                let passed = |to: usize| {
+                    let into = row.iter().zip(&rows).map(|(chance, row)| chance.clone() * &row[to]);
+                    into.fold(big(0.0), |sum, chance| sum + chance) * &weight[to]
+                };
+                row = (0..row.len()).map(passed).collect();
+                let sum = row.iter().fold(big(0.0), |sum, x| sum + x);
+                log_factor.push(sum.ln() - rho.clone() * big(f64::from(n)));
+            }
+            factors(&mut worst, &spec, &offsets(), |t| between_years(&log_factor, t));
+        }
+    }
+    worst.report(800);
 }
 
 fn gamma(mean: f64, sd: f64, t: f64) -> Big {

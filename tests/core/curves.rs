@@ -1,7 +1,8 @@
 //! What each curve does at its edges and limits, by the design's table of formulas and small hand calculations.
 
 use hence_core::{
-    Band, Compounding, Curve, Edge, Error, ErrorKind, HorizonRule, Parts, Position, Spec, Timing, Where,
+    Band, Compounding, Curve, Edge, Error, ErrorKind, HorizonRule, Parts, Persistence, Position, Spec,
+    Timing, Where,
 };
 
 const AT: Where = Where { base_year: Some(2026), length: None };
@@ -187,6 +188,7 @@ fn the_ramsey_rule_linear_and_exact() {
 
 #[test]
 fn what_this_version_does_not_compute_is_refused() {
+    let half = Persistence { phi: 0.5, start: 0.0 };
     let uncertain = |persistence, sd| Spec::UncertainGrowth {
         preference: 0.01,
         hazard: 0.0,
@@ -197,7 +199,7 @@ fn what_this_version_does_not_compute_is_refused() {
         persistence,
         compounding: Compounding::Yearly,
     };
-    assert_eq!(refused(uncertain(Some(0.7), 0.036)).kind(), ErrorKind::Unsupported);
+    assert_eq!(refused(uncertain(Some(half), 0.036)).kind(), ErrorKind::Unsupported);
     assert_eq!(refused(uncertain(None, -0.1)).kind(), ErrorKind::RateRange);
     // Without spread it is the linear rule: 1% + 2 x 2%.
     assert_eq!(made(uncertain(None, 0.0)).forward_rate(1.0).unwrap(), 0.05);

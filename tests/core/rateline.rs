@@ -1,7 +1,9 @@
 //! The rate line against its specification: the design's examples, errors that point, and print-then-parse.
 //!
 //! The case files hold the examples of the grammar's specification and its rules, worked by hand.
-use hence_core::{Band, Compounding, Edge, HorizonRule, Position, RateLine, Spec, Where, percent};
+use hence_core::{
+    Band, Compounding, Edge, HorizonRule, Persistence, Position, RateLine, Spec, Where, percent,
+};
 use proptest::prelude::*;
 
 /// The cases of a file: lines that are neither empty nor a comment, cut at " | ".
@@ -76,7 +78,7 @@ fn meanings() {
             mean: 0.02,
             sd: 0.036,
             log: true,
-            persistence: Some(0.7),
+            persistence: Some(Persistence { phi: 0.7, start: 0.0 }),
             compounding: Compounding::Continuous,
         })
     );
@@ -266,7 +268,8 @@ fn simple() -> impl Strategy<Value = Spec> {
             .prop_map(|((preference, hazard, elasticity), mean, sd, log, persistence, compounding)| {
                 // Log growth is continuous, and persistence is that of log growth.
                 let compounding = if log { Compounding::Continuous } else { compounding };
-                let persistence = persistence.filter(|_| log);
+                let persistence =
+                    persistence.filter(|_| log).map(|phi| Persistence { phi: phi + 0.0, start: 0.0 });
                 Spec::UncertainGrowth {
                     preference,
                     hazard,

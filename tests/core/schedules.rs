@@ -157,7 +157,7 @@ fn tables_and_growth_by_year() {
     assert_eq!(with(&offsets).unwrap().spec(), &ramsey(path(Edge::Offset(1.0), Edge::Offset(2.0))));
 
     for (curve, message) in [
-        ("", "give exactly one of `line`, `table` and `growth_by_year`"),
+        ("", "give exactly one of `line`, `table`, `growth_by_year`, `persistent_growth` and `regimes`"),
         ("table = []", "table: the first pair must be [0, 1]"),
         ("table = [[0, 0.9]]", "table: the first pair must be [0, 1]"),
         ("table = [[0, 1]]", "table: there must be a second pair"),

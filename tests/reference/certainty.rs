@@ -1,7 +1,7 @@
 //! Certainty equivalents: gamma-distributed rates, two rates at even odds, uncertain growth.
 
 use crate::tables::{Row, Table, continuous, flat, made};
-use hence_core::{Compounding, Curve, Spec};
+use hence_core::{Compounding, Curve, GrowthState, Persistence, Spec};
 
 fn even(low: Spec, high: Spec) -> Curve {
     made(&Spec::Mixture(vec![(0.5, low), (0.5, high)]))
@@ -48,6 +48,14 @@ fn two_rates(row: &Row) -> f64 {
 }
 
 fn precautionary(row: &Row, log: bool) -> f64 {
+    let none = Persistence { phi: 0.0, start: 0.0 };
+    if log {
+        row.agrees(precautionary_rate(row, true, Some(none)), "recomputed", 1e-12);
+    }
+    precautionary_rate(row, log, None)
+}
+
+fn precautionary_rate(row: &Row, log: bool, persistence: Option<Persistence>) -> f64 {
     let curve = made(&Spec::UncertainGrowth {
         preference: parameter(row, "delta"),
         hazard: 0.0,
@@ -55,17 +63,27 @@ fn precautionary(row: &Row, log: bool) -> f64 {
         mean: parameter(row, if log { "mu" } else { "g" }),
         sd: parameter(row, "sigma"),
         log,
-        persistence: None,
+        persistence,
         compounding: Compounding::Continuous,
     });
     curve.mean_rate_continuous(50.0).unwrap()
 }
 
-/// Growth of 1% or 3% for ever, elasticity 2: rates of 2% or 6%.
+/// Growth of 1% or 3% for ever, elasticity 2: rates of 2% or 6%, or two states that are never left.
 fn persistent_growth(row: &Row) -> f64 {
     assert_eq!(parameter(row, "eta"), 2.0);
     assert!(row.text("parameters").contains("growth 1 or 3 percent, even odds"));
-    even(continuous(0.02), continuous(0.06)).mean_rate_continuous(row.number("t")).unwrap()
+    let states = made(&Spec::GrowthRegimes {
+        preference: 0.0,
+        hazard: 0.0,
+        elasticity: 2.0,
+        states: vec![GrowthState { mean: 0.01, sd: 0.0 }, GrowthState { mean: 0.03, sd: 0.0 }],
+        transition: vec![vec![1.0, 0.0], vec![0.0, 1.0]],
+        start: vec![0.5, 0.5],
+    });
+    let t = row.number("t");
+    row.agrees(states.mean_rate_continuous(t).unwrap(), "recomputed", 1e-12);
+    even(continuous(0.02), continuous(0.06)).mean_rate_continuous(t).unwrap()
 }
 
 #[test]

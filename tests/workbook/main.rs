@@ -1,8 +1,10 @@
 //! The workbook crate from outside: real, small and hostile workbooks.
 
 mod bare;
+mod brief;
 mod codes;
 mod corpus;
+mod draws;
 mod files;
 mod fill;
 mod formulas;
@@ -24,6 +26,7 @@ mod resolve;
 mod roles;
 mod samples;
 mod scenario;
+mod sensitivity;
 mod sheets;
 mod small;
 mod stale;

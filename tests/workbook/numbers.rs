@@ -14,6 +14,7 @@ use hence_workbook::sheets::VERDICT_AGREES;
 
 mod book;
 mod curves;
+mod drawn;
 mod model;
 pub mod published;
 mod recalculated;

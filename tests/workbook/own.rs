@@ -272,7 +272,15 @@ fn notes_survive_a_save_by_libreoffice() {
     // hence's sheets are there once, and the filled cells refer to them.
     let book = Workbook::read(&package(&second)).expect("a workbook");
     let names: Vec<&str> = book.sheets.iter().map(|sheet| sheet.name.as_str()).collect();
-    let own = ["Discounting", SUMMARY, "Audit coverage", "Audit checks", "Audit changes", "Audit charts"];
+    let own = [
+        "Discounting",
+        SUMMARY,
+        "Audit coverage",
+        "Audit checks",
+        "Audit sensitivity",
+        "Audit changes",
+        "Audit charts",
+    ];
     assert_eq!(names[..3], ["Inputs", "Do nothing", "The wall's end"]);
     assert_eq!(names[3..], own);
     assert_eq!(refused(&back["edited.xlsx"]), [("own-sheet-edited", SUMMARY.to_owned())]);

@@ -3,8 +3,9 @@
 //! Figures are made up for the test. Outcomes are worked out here from the curve's factors alone.
 
 use chrono::NaiveDate;
-use hence_core::{Basis, Catalogue, Payback, Position, Tail, Timing, Where, internal_rates};
+use hence_core::{Basis, Catalogue, Payback, Perpetual, Position, Tail, Timing, Where, internal_rates};
 use hence_workbook::appraisal::*;
+use hence_workbook::dated::Flows;
 use hence_workbook::outcome::*;
 use hence_workbook::references::{Cell, Range, SheetRange};
 
@@ -207,8 +208,25 @@ fn offset(case: &Case, label: &Label) -> f64 {
     }
 }
 
+/// The built-in schedules, and two of growth that no rate line can state.
+pub fn catalogue() -> Catalogue {
+    let file = |id: &str, curve: &str| {
+        let text = format!(
+            "id = \"{id}\"\ntitle = \"Growth made up for a test\"\nbody = \"Ostrey Rivers Board\"\nyear = 2026\n\
+             place = \"rule 5\"\naddress = \"\"\nstatus = \"current\"\ncomplete = true\nchecked = \"invented\"\n{curve}"
+        );
+        (format!("{id}.toml"), text)
+    };
+    let states = "[regimes]\npreference = 0.01\nhazard = 0.002\nelasticity = 1.5\nstart = [0.7, 0.2, 0.1]\n\
+                  states = [{ mean = 0.03, sd = 0.02 }, { mean = -0.01, sd = 0.03 }, { mean = 0.05, sd = 0 }]\n\
+                  transition = [[0.9, 0.05, 0.05], [0.3, 0.6, 0.1], [0.25, 0.25, 0.5]]\n";
+    let low = "[persistent_growth]\npreference = 0.005\nelasticity = 2\nmean = 0.02\nsd = 0.015\n\
+               persistence = 0.6\nstart = -0.04\n";
+    Catalogue::builtin().with(&[file("ostrey-states", states), file("ostrey-low", low)]).expect("schedules")
+}
+
 pub fn outcomes(case: &Case, appraisal: &Appraisal) -> Vec<ChoiceOutcome> {
-    let basis = Basis::parse(case.basis, &Catalogue::builtin()).unwrap();
+    let basis = Basis::parse(case.basis, &catalogue()).unwrap();
     let mut all: Vec<ChoiceOutcome> =
         appraisal.choices.iter().map(|c| outcome(case, appraisal, c, &basis)).collect();
     let base = all[0].absolute;
@@ -285,7 +303,21 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
     let pv_benefits = streams[1].pv - streams[2].pv;
     let service_years = length.ceil() as u32;
     let annuity: f64 = (1..=service_years).map(|n| curve.factor(f64::from(n)).unwrap()).sum();
+    let ends: &[f64] = if averaged { &[0.0, 1.0] } else { &[0.0] };
+    let halves = offsets.iter().zip(&net);
+    let halves = halves.flat_map(|(t, x)| ends.iter().map(move |end| (t - end, x / ends.len() as f64)));
+    let (at, flows) = halves.unzip();
+    let signs = [-1.0, 1.0, -1.0];
+    let tailed = choice.streams.iter().zip(&streams).zip(signs).filter(|((s, _), _)| s.tail.is_some());
+    let perpetual = tailed.map(|((_, o), sign)| Perpetual {
+        start: offsets[offsets.len() - 1],
+        flow: sign * o.flows[o.flows.len() - 1],
+        growth: 0.0,
+        every: 1,
+    });
+    let perpetual = perpetual.collect();
     ChoiceOutcome {
+        dated: Flows { offsets: at, flows, perpetual },
         basis: basis.clone(),
         timing: case.timing,
         base_words: "2026".into(),

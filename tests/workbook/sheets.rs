@@ -67,6 +67,22 @@ fn cases() -> Vec<Case> {
             true,
         ),
         case("preference 1%, elasticity 2, growth 2% sd 3.6%", END, Labels::Years, Across, true),
+        case(
+            "preference 1%, elasticity 2, log growth 2% sd 2% persistence 0.5",
+            MIDDLE,
+            Labels::Years,
+            Across,
+            true,
+        ),
+        case(
+            "0.5 of (preference 1%, elasticity 2, log growth 2% sd 2% persistence -0.3), 0.5 of (3% to 9, 2% after)",
+            END,
+            Labels::Years,
+            Down,
+            true,
+        ),
+        case("ostrey-states", AVERAGED, Labels::Financial, Down, true),
+        case("ostrey-low", END, Labels::Numbers, Across, false),
         case("gamma mean 4% sd 3%", MIDDLE, Labels::Years, Across, true),
         case("0.5 of (1%), 0.5 of (7% continuous)", END, Labels::Years, Down, false),
         case(
@@ -134,7 +150,10 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
         after: "=INDEX(Discounting!$D$8:$D$67,MATCH(C$4,Discounting!$A$8:$A$67,0))".into(),
     }];
     let differs = vec!["The sheet list names the sheets that were added.".to_owned()];
+    let sensitivity =
+        hence_workbook::compare::sensitivity(&appraisal, &outcomes, &[], &Catalogue::builtin()).unwrap();
     let input = AuditInput {
+        sensitivity: &sensitivity,
         companions: &[],
         appraisal: &appraisal,
         outcomes: &outcomes,
@@ -453,7 +472,7 @@ fn notes_of_a_person_are_put_back_outside_of_what_is_marked_as_own() {
 fn the_verdict_cell_is_named() {
     let audit = audit(&case("3.5%", END, Labels::Years, Direction::Across, true));
     assert_eq!(audit.composed.verdict_at, "'Audit summary'!$B$3");
-    assert_eq!(audit.composed.built.charts.len(), 3);
+    assert_eq!(audit.composed.built.charts.len(), 4);
 }
 #[test]
 fn the_sheets_can_be_grafted_and_a_second_time_gives_the_same_bytes() {
@@ -479,8 +498,8 @@ fn the_sheets_can_be_grafted_and_a_second_time_gives_the_same_bytes() {
     }
     assert!(again.bytes() == twice.bytes(), "the packages differ though their parts do not");
     let book = String::from_utf8(again.part("xl/workbook.xml").unwrap().unwrap()).unwrap();
-    assert_eq!(book.matches("name=\"hence_own\"").count(), 6);
-    assert_eq!(book.matches("name=\"hence_digest\"").count(), 6);
+    assert_eq!(book.matches("name=\"hence_own\"").count(), 7);
+    assert_eq!(book.matches("name=\"hence_digest\"").count(), 7);
     assert!(book.contains("name=\"hence_verdict\""));
 }
 

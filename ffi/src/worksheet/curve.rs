@@ -1,16 +1,12 @@
 //! The basis argument and its curve.
 
-use std::sync::LazyLock;
-
 use chrono::Datelike;
-use hence_core::{Basis, Catalogue, Curve, Where};
+use hence_core::{Basis, Curve, Where};
 
 use super::Cell;
 use super::arguments::{Arguments, Place, Year, is_blank, number, year};
 use super::fault::{Fault, Outcome};
-
-/// The built-in schedules: cells know no others.
-pub(super) static CATALOGUE: LazyLock<Catalogue> = LazyLock::new(Catalogue::builtin);
+use crate::basis::CATALOGUE;
 
 /// A basis: a rate line, the id of a schedule, or a rate as a number.
 pub(super) fn basis(place: Place<'_>) -> Outcome<Basis> {

@@ -6,11 +6,12 @@ use hence_core::{
 };
 
 use super::arguments::{Arguments, Place, Year, number, text};
-use super::curve::{CATALOGUE, basis, context, curve};
+use super::curve::{basis, context, curve};
 use super::fault::{Fault, Outcome};
 use super::flows::{Clock, Streams, values, years_after};
 use super::spread::spread;
 use super::{Cell, CellError, Range, explain};
+use crate::basis::CATALOGUE;
 
 /// Runs the function of that name.
 pub(super) fn run(name: &str, arguments: &Arguments<'_>) -> Outcome<Range<'static>> {

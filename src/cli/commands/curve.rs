@@ -14,9 +14,16 @@ struct Row {
     factor: f64,
     forward: Option<f64>,
     mean: Option<f64>,
+    instantaneous: Option<f64>,
 }
 
-/// Prints columns t, factor, forward_rate (of the year that ends at t) and mean_rate (to t).
+/// What the three forms of a rate at t are, as they are called in the headings.
+const FORMS: &str = "forward_rate: of the year that ends at t, compounded yearly, D(t-1)/D(t) - 1\n\
+                     mean_rate: from the base to t, compounded yearly, D(t)^(-1/t) - 1\n\
+                     instantaneous_rate: at t, compounded continuously, -D'(t)/D(t)\n";
+
+/// Prints columns t, factor, forward_rate (of the year that ends at t) and mean_rate (to t); in the table and in JSON also
+/// instantaneous_rate.
 pub fn run(args: &Curve, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
     let basis = Basis::parse(&args.line, &catalogue).map_err(|e| super::typed(&e, &args.line))?;
@@ -29,7 +36,8 @@ pub fn run(args: &Curve, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
     for t in offsets {
         let factor = curve.factor(t).map_err(|e| super::typed(&e, &args.line))?;
         let forward = if t > 0.0 { curve.forward_rate(t).ok() } else { None };
-        rows.push(Row { t, factor, forward, mean: curve.mean_rate(t).ok() });
+        let (mean, instantaneous) = (curve.mean_rate(t).ok(), curve.instantaneous_rate(t).ok());
+        rows.push(Row { t, factor, forward, mean, instantaneous });
     }
     let warnings: Vec<String> = basis.warnings().into_iter().chain(curve.warnings()).collect();
     for warning in &warnings {
@@ -65,7 +73,8 @@ fn json(basis: &Basis, warnings: &[String], rows: &[Row]) -> String {
         .iter()
         .map(|row| {
             serde_json::json!({
-                "t": row.t, "factor": row.factor, "forward_rate": row.forward, "mean_rate": row.mean
+                "t": row.t, "factor": row.factor, "forward_rate": row.forward, "mean_rate": row.mean,
+                "instantaneous_rate": row.instantaneous
             })
         })
         .collect();
@@ -77,22 +86,24 @@ fn json(basis: &Basis, warnings: &[String], rows: &[Row]) -> String {
 
 fn table(basis: &Basis, rows: &[Row]) -> String {
     let mut text = format!(
-        "{}\n{}\n{}\n\n{:>8}  {:>22}  {:>22}  {:>22}\n",
+        "{}\n{}\n{}\n\n{FORMS}\n{:>8}  {:>22}  {:>22}  {:>22}  {:>22}\n",
         basis.canonical(),
         basis.words(),
         hence_core::CAUTION,
         "t",
         "factor",
         "forward_rate",
-        "mean_rate"
+        "mean_rate",
+        "instantaneous_rate"
     );
     for row in rows {
         text.push_str(&format!(
-            "{:>8}  {:>22}  {:>22}  {:>22}\n",
+            "{:>8}  {:>22}  {:>22}  {:>22}  {:>22}\n",
             shortest(row.t),
             shortest(row.factor),
             shortest_or_blank(row.forward),
-            shortest_or_blank(row.mean)
+            shortest_or_blank(row.mean),
+            shortest_or_blank(row.instantaneous)
         ));
     }
     text

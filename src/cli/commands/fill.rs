@@ -2,7 +2,7 @@
 
 use std::path::{Path, PathBuf};
 
-use hence_core::Catalogue;
+use hence_core::{Basis, Catalogue};
 use hence_workbook::fill::{FillRequest, fill, fill_file};
 use hence_workbook::package::write_atomically;
 use hence_workbook::problem::Result as BookResult;
@@ -18,12 +18,16 @@ use crate::{Failure, Outcome, input, render};
 /// Fills every workbook; one that fails does not keep the others from being filled.
 pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
+    for line in &args.against {
+        Basis::parse(line, &catalogue).map_err(|error| super::typed(&error, line))?;
+    }
     let request = FillRequest {
         basis: args.basis.clone(),
         replace: args.replace.as_deref().map(|text| pair(text, "--replace", "OLD=NEW")).transpose()?,
         roles: roles(&args.roles)?,
         formulas: args.write == WriteWhat::Formulas,
         replace_formulas: args.replace_formulas,
+        against: args.against.clone(),
         as_of: args.as_of.clone(),
         by: args.by.clone(),
     };

@@ -1,9 +1,13 @@
 //! One module a command.
 
+pub mod brief;
 pub mod check;
+pub mod compare;
 pub mod curve;
+pub mod draws;
 pub mod fill;
 pub mod names;
+pub mod rate;
 pub mod schedules;
 pub mod start;
 

@@ -33,6 +33,8 @@ pub struct ChartFinish {
     pub legend: Option<Legend>,
     /// A marker at every point of a line. Without it lines differ by their dashes.
     pub markers: bool,
+    /// Bars of all series lie in one line, the first label's on top.
+    pub tornado: bool,
     /// Width and height in columns and rows; as made unless said.
     pub size: Option<(u32, u32)>,
 }
@@ -62,7 +64,8 @@ const AXIS: [&str; 13] = [
     "spPr",
     "crossAx",
 ];
-const PLOT: [&str; 6] = ["barDir", "scatterStyle", "grouping", "wireframe", "varyColors", "ser"];
+const PLOT: [&str; 9] =
+    ["barDir", "scatterStyle", "grouping", "wireframe", "varyColors", "ser", "dLbls", "gapWidth", "overlap"];
 const SERIES: [&str; 17] = [
     "idx",
     "order",
@@ -165,6 +168,9 @@ fn finish_axis(edits: &mut Edits, axis: &Element, finish: &ChartFinish, first: b
         );
         put(edits, axis, &AXIS, "scaling", &scaling);
     }
+    if finish.tornado && first {
+        put(edits, axis, &AXIS, "scaling", "<c:scaling><c:orientation val=\"maxMin\"/></c:scaling>");
+    }
     put(edits, axis, &AXIS, "delete", "<c:delete val=\"0\"/>");
     let line = |colour| {
         format!(
@@ -192,6 +198,11 @@ fn finish_axis(edits: &mut Edits, axis: &Element, finish: &ChartFinish, first: b
 
 fn finish_plot(edits: &mut Edits, plot: &Element, kind: &str, finish: &ChartFinish, count: &mut usize) {
     put(edits, plot, &PLOT, "varyColors", "<c:varyColors val=\"0\"/>");
+    if finish.tornado {
+        // One piece of text, as two edits may not stand at one place.
+        put(edits, plot, &PLOT, "overlap", "<c:gapWidth val=\"60\"/><c:overlap val=\"100\"/>");
+        put(edits, plot, &PLOT, "gapWidth", "");
+    }
     for series in plot.children.iter().filter(|child| child.local() == "ser") {
         let i = *count % COLOURS.len();
         *count += 1;

@@ -109,10 +109,15 @@ fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Name
     if name.role.info().way == Way::Own {
         return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given").into());
     }
+    Ok(Named { name, from, at: located(context, place, range)?, scope: None })
+}
+
+/// The cells that a text such as `Sheet1!C7:F7`, or a defined name, stands for; `place` is where the text comes from.
+pub(super) fn located(context: &Context, place: Place, range: &str) -> Checked<SheetRange> {
     if let Ok(at) = range.parse::<SheetRange>()
         && let Some(sheet) = context.book.sheets.iter().find(|sheet| same_text(&sheet.name, &at.sheet))
     {
-        return Ok(Named { name, from, at: SheetRange { sheet: sheet.name.clone(), ..at }, scope: None });
+        return Ok(SheetRange { sheet: sheet.name.clone(), ..at });
     }
     let (sheet, wanted) = match range.rsplit_once('!') {
         Some((sheet, wanted)) => (Some(sheet.trim_matches('\'').replace("''", "'")), wanted),
@@ -135,7 +140,7 @@ fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Name
         .hint("write the cells as Sheet1!C7:F7, or 'My sheet'!C7:F7")
         .into());
     };
-    Ok(Named { name, from, at: cells(context, defined)?, scope: None })
+    cells(context, defined)
 }
 
 fn same_text(a: &str, b: &str) -> bool {
@@ -191,7 +196,7 @@ pub(super) fn cells(context: &Context, defined: &DefinedName) -> Checked<SheetRa
 }
 
 /// A name on exactly one merged area means its upper left cell, the only one that holds anything.
-fn shrink_to_merged(context: &mut Context, named: &mut Named) {
+pub(super) fn shrink_to_merged(context: &mut Context, named: &mut Named) {
     let several = matches!(named.name.role, Role::Budget | Role::Shared | Role::Costs | Role::Benefits);
     if several || named.at.range.is_single() {
         return;
@@ -202,7 +207,7 @@ fn shrink_to_merged(context: &mut Context, named: &mut Named) {
 }
 
 /// Whole rows and columns reach past the appraisal, and so do ranges of millions of cells.
-fn whole(named: &Named) -> Option<Problem> {
+pub(super) fn whole(named: &Named) -> Option<Problem> {
     let Range { first, last } = named.at.range;
     let whole_row = first.col == 0 && last.col + 1 == MAX_COLUMNS;
     let whole_column = first.row == 0 && last.row + 1 == MAX_ROWS;

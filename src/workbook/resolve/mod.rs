@@ -9,6 +9,7 @@ mod find;
 mod groups;
 mod prices;
 mod report;
+mod series;
 mod settings;
 mod streams;
 mod targets;
@@ -28,6 +29,7 @@ use crate::references::{Cell, Range, SheetRange};
 
 pub(crate) use counted::sum_of;
 pub use report::{Found, NamesReport, names};
+pub use series::{SeriesGrowth, growth_of_series};
 
 /// What the run was told besides the workbook.
 #[derive(Clone, Copy, Debug, Default)]

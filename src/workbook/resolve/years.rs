@@ -72,7 +72,7 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
 }
 
 /// One cell of the years.
-fn label(content: &ReadCell, date1904: bool, place: Place) -> Checked<Label> {
+pub(super) fn label(content: &ReadCell, date1904: bool, place: Place) -> Checked<Label> {
     let wrong = |message: String| Problem::error("years-value", place.clone(), message);
     let problem = match &content.value {
         Value::Blank if content.lacks_result() => return number(content, place).map(|_| Label::Number(0)),

@@ -1,12 +1,21 @@
-//! What was made of the flows as entered, in words for the summary.
+//! What was made of the flows as entered, in words for the summary and the brief.
 
 use super::AuditInput;
 use crate::adjust;
+use crate::appraisal::Appraisal;
+use crate::outcome::ChoiceOutcome;
 
-/// Sign, unit, uplift, residual value and what follows the last year, a sentence for each stream that has any.
+/// A sentence for each stream of which anything was made.
 pub(super) fn words(input: &AuditInput<'_>) -> Vec<String> {
+    let all = adjusted(input.appraisal, input.outcomes);
+    all.into_iter().map(|(option, stream, words)| format!("{option}, {stream}: {words}.")).collect()
+}
+
+/// Sign, unit, uplift, residual value, what follows the last year, basis, prices and weights, in words for each stream
+/// that has any: option, stream, words.
+pub(crate) fn adjusted(appraisal: &Appraisal, outcomes: &[ChoiceOutcome]) -> Vec<(String, String, String)> {
     let mut texts = Vec::new();
-    for (c, choice) in input.appraisal.choices.iter().enumerate() {
+    for (c, choice) in appraisal.choices.iter().enumerate() {
         for (s, stream) in choice.streams.iter().enumerate() {
             let mut parts = Vec::new();
             if stream.sign < 0.0 {
@@ -24,14 +33,14 @@ pub(super) fn words(input: &AuditInput<'_>) -> Vec<String> {
             if let Some(tail) = &stream.tail {
                 parts.push(format!("going on after the last year: {}", tail.value));
             }
-            if let Some(own) = &input.outcomes[c].streams[s].own {
+            if let Some(own) = &outcomes[c].streams[s].own {
                 parts.push(format!("discounted on {}, a basis of its own", own.basis.canonical()));
             }
-            if input.outcomes[c].streams[s].multipliers.is_some() {
-                parts.push(adjust::multiplier_words(stream, choice, &input.outcomes[c]));
+            if outcomes[c].streams[s].multipliers.is_some() {
+                parts.push(adjust::multiplier_words(stream, choice, &outcomes[c]));
             }
             if !parts.is_empty() {
-                texts.push(format!("{}, {}: {}.", choice.name, stream.name, parts.join("; ")));
+                texts.push((choice.name.clone(), stream.name.clone(), parts.join("; ")));
             }
         }
     }

@@ -98,7 +98,7 @@ fn eras(sheet: &mut Sheet, input: &AuditInput<'_>, row: &mut u32, finishes: &mut
 }
 
 /// A block of years in words, from the edges of eras.
-pub(super) fn era_words(edges: &[f64], k: usize) -> String {
+pub(crate) fn era_words(edges: &[f64], k: usize) -> String {
     match (k.checked_sub(1).map(|i| edges[i]), edges.get(k)) {
         (None, Some(to)) => format!("to year {to}"),
         (Some(from), Some(to)) => format!("after {from} to {to}"),

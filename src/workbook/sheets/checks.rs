@@ -1,6 +1,7 @@
 //! The checks sheet: every factor, present value and filled cell against a second route, live.
 
 use super::lines::{AGREES, DIFFERS, Line, Live, col};
+use super::nets::Nets;
 use super::rebuild::Rebuilt;
 use super::{AuditInput, TargetCell, discounting::side_words, offsets, settings};
 use crate::appraisal::{Held, Label, TargetRole};
@@ -31,6 +32,8 @@ pub(super) struct Checks {
     pub awaiting: usize,
     /// Number of checks that have a second route.
     pub independent: usize,
+    /// The net flows of each option, live, where they are whole.
+    pub nets: Vec<Option<Nets>>,
     /// Of all checks, those of multipliers of flows.
     pub multipliers: usize,
     /// Of all checks, those of values against consumption.
@@ -105,6 +108,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout) -> Checks {
         last: Cell { row: end.max(FIRST + 1), col: col::RESULT },
     };
     Checks {
+        nets: (0..input.appraisal.choices.len()).map(|c| Nets::of(&make, c)).collect(),
         sheet,
         results,
         count: lines.len(),

@@ -6,13 +6,16 @@ mod charts;
 mod checks;
 mod coverage;
 mod discounting;
+mod growth_route;
 mod lines;
 mod multipliers;
+mod nets;
 mod offsets;
 pub(crate) mod own;
 mod own_factors;
 mod rebuild;
 mod second_route;
+mod sensitivity;
 mod settings;
 mod summary;
 mod tails;
@@ -23,6 +26,7 @@ mod welfare;
 use hence_core::{Basis, CAUTION};
 
 use crate::appraisal::Appraisal;
+use crate::compare::Sensitivity;
 use crate::graft::ChartFinish;
 use crate::layout::{Block, Layout};
 use crate::names_edit::NewName;
@@ -32,6 +36,8 @@ use crate::references::{Cell, SheetRange};
 use crate::report::Companion;
 use crate::writer::{self, Content, Sheet, Style};
 
+pub(crate) use adjustments::adjusted;
+pub(crate) use charts::era_words;
 pub use own::{DIGEST, OWN, VERDICT};
 pub use summary::VERDICT_AGREES;
 pub(crate) use targets::role_words;
@@ -47,6 +53,8 @@ pub struct SheetNames {
     pub coverage: String,
     /// Each factor and total rebuilt by a second route, live.
     pub checks: String,
+    /// Other rates, switching values, streams by their effect, where the rate comes from.
+    pub sensitivity: String,
     /// Sheet, cell, role, before, after.
     pub changes: String,
     /// Factor curve, PV by era, NPV against a flat rate.
@@ -148,6 +156,8 @@ pub struct AuditInput<'a> {
     pub problems: &'a [Problem],
     /// One a choice: the same under the schedule that its body wants run beside the declared one.
     pub companions: &'a [Option<Companion>],
+    /// What other rates would make of the decision.
+    pub sensitivity: &'a Sensitivity,
     /// Notes to put back.
     pub carried: &'a [Carried],
     /// What differs in the package by design, a sentence each.
@@ -192,11 +202,20 @@ pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
     let checks = checks::sheet(input, layout);
     let coverage = coverage::sheet(input);
     let summary = summary::sheet(input, layout, &checks, &coverage);
-    let (charts, finishes) = charts::sheet(input, layout);
+    let (sensitivity, mut finishes) = sensitivity::sheet(input, layout, &checks);
+    let (charts, more) = charts::sheet(input, layout);
+    finishes.extend(more);
     let verdict_at = summary::verdict_text(&summary.sheet.name, summary.cell);
     let discounting = discounting::sheet(input, layout);
-    let mut sheets =
-        vec![discounting, summary.sheet, coverage.sheet, checks.sheet, changes::sheet(input), charts];
+    let mut sheets = vec![
+        discounting,
+        summary.sheet,
+        coverage.sheet,
+        checks.sheet,
+        sensitivity,
+        changes::sheet(input),
+        charts,
+    ];
     let names = sheets.iter().flat_map(own::marks).collect();
     for sheet in &mut sheets {
         put_back(sheet, input.carried);

@@ -33,6 +33,7 @@ impl SheetNames {
             summary: free("Audit summary"),
             coverage: free("Audit coverage"),
             checks: free("Audit checks"),
+            sensitivity: free("Audit sensitivity"),
             changes: free("Audit changes"),
             charts: free("Audit charts"),
         }

@@ -2,6 +2,7 @@
 
 use hence_core::Where;
 
+use super::growth_route::{Persistent, Regimes};
 use super::second_route::{Form, Route, Rule};
 use crate::appraisal::{Base, Label};
 use crate::formulas::{absolute, literal};
@@ -52,7 +53,8 @@ impl Rebuilt {
         let averaged = outcome.timing.flows == hence_core::Position::Averaged
             && !labels.iter().any(|l| matches!(l, Label::Offset(_) | Label::Date(_)));
         let fold = |f: fn(f64, f64) -> f64, start| offsets.iter().copied().fold(start, f);
-        let lowest = fold(f64::min, 0.0) - if averaged { 1.0 } else { 0.0 };
+        // An averaged flow needs the factor a year earlier, too.
+        let lowest = (fold(f64::min, f64::INFINITY) - if averaged { 1.0 } else { 0.0 }).min(0.0);
         // The length of the appraisal, from these offsets alone; as many service years begin in it.
         let length = fold(f64::max, 0.0);
         let service_years = (length - 1e-9).ceil().max(0.0) as u32;
@@ -79,6 +81,8 @@ impl Rebuilt {
                     Form::Rate { .. } => 5,
                     Form::Gamma { .. } => 2,
                     Form::Chain { bands, .. } => 3 + bands.len() as u32,
+                    Form::Persistent(growth) => growth.inputs().len() as u32,
+                    Form::Regimes(growth) => 3 + growth.states.len() as u32,
                     Form::Steps(rows, _) | Form::Points(rows, _) => 2 + rows.len() as u32,
                 };
             }
@@ -109,7 +113,7 @@ impl Rebuilt {
         if years == 0 {
             return Some("0".to_owned());
         }
-        let col = 1 + 2 * route.parts.len() as u32;
+        let col = column(route, route.parts.len());
         let row = |n: u32| self.top + self.grid + n;
         Some(format!("SUM({})", span(row(1), col, row(years), col)))
     }
@@ -158,16 +162,18 @@ impl Rebuilt {
                     &format!("(0-{mean}^2/{sd}^2)"),
                 )
             }
-            Form::Chain { .. } => {
-                let years = self.route.as_ref().map_or(0, |r| r.years as u32);
-                let (first, last) = (self.top + self.grid, self.top + self.grid + years);
-                let rates = span(first, 1 + 2 * k as u32, last, 1 + 2 * k as u32);
-                let chain = span(first, 2 + 2 * k as u32, last, 2 + 2 * k as u32);
-                let year_one = at(first + 1, 1 + 2 * k as u32);
-                format!(
-                    "IF({t}<0,(1+{year_one})^(-{t}),\
-                     INDEX({chain},INT({t})+1)/(1+INDEX({rates},INT({t})+2))^({t}-INT({t})))"
-                )
+            Form::Chain { .. } | Form::Persistent(_) | Form::Regimes(_) => {
+                let Some(route) = &self.route else { return String::new() };
+                let (first, last) = (self.top + self.grid, self.top + self.grid + route.years as u32);
+                let rate = column(route, k);
+                let rates = span(first, rate, last, rate);
+                let chain = span(first, rate + 1, last, rate + 1);
+                let after = format!("INDEX({chain},INT({t})+1)/(1+INDEX({rates},INT({t})+2))^({t}-INT({t}))");
+                if let Form::Chain { .. } = form {
+                    let year_one = at(first + 1, rate);
+                    return format!("IF({t}<0,(1+{year_one})^(-{t}),{after})");
+                }
+                after
             }
             Form::Steps(rows, fixed) => {
                 let x = if fixed.is_some() { at(top + 1, 1) } else { t.to_owned() };
@@ -243,6 +249,35 @@ impl Rebuilt {
                     sheet.formula(row, 2, Style::Exact, text, Cached::Number(rule.rate(x, *preferences)));
                 }
             }
+            Form::Persistent(growth) => {
+                for (row, (name, value)) in growth.inputs().into_iter().enumerate() {
+                    given(row as u32 + 1, name, value);
+                }
+            }
+            Form::Regimes(growth) => {
+                given(1, "time preference and hazard", growth.rho);
+                given(2, "elasticity", growth.eta);
+                let words = [
+                    "State",
+                    "Mean of log growth",
+                    "Standard deviation",
+                    "Chance at the base",
+                    "Chance from 1",
+                ];
+                headings(sheet, top + 3, &words);
+                for (j, state) in growth.states.iter().enumerate() {
+                    let row = top + 4 + j as u32;
+                    sheet.number(row, 0, Style::Year, j as f64 + 1.0);
+                    let chances = growth.into[j].iter().copied();
+                    let cells = [state.mean, state.sd, growth.start[j]].into_iter().chain(chances);
+                    for (i, value) in cells.enumerate() {
+                        sheet.number(row, i as u32 + 1, Style::Exact, value);
+                    }
+                    if j > 0 {
+                        sheet.text(top + 3, 4 + j as u32, Style::Heading, format!("from {}", j + 1));
+                    }
+                }
+            }
             Form::Steps(rows, fixed) | Form::Points(rows, fixed) => {
                 if let Some(length) = fixed {
                     given(1, "length of the appraisal", *length);
@@ -259,32 +294,27 @@ impl Rebuilt {
 
     fn grid(&self, sheet: &mut Sheet, route: &Route) {
         let first = self.top + self.grid;
-        let combined = 1 + 2 * route.parts.len() as u32;
+        let combined = column(route, route.parts.len());
         headings(sheet, first - 1, &["Year n"]);
-        for (k, (_, form)) in route.parts.iter().enumerate() {
-            if let Form::Chain { .. } = form {
-                sheet.text(first - 1, 1 + 2 * k as u32, Style::Heading, "Rate of the year");
-                sheet.text(first - 1, 2 + 2 * k as u32, Style::Heading, "Chain");
+        for (k, (_, form)) in route.parts.iter().enumerate().filter(|(_, (_, form))| form.is_chain()) {
+            let rate = column(route, k);
+            sheet.text(first - 1, rate, Style::Heading, "Rate of the year");
+            sheet.text(first - 1, rate + 1, Style::Heading, "Chain");
+            for c in 0..route.columns(k).len() {
+                let heading = match (form, c) {
+                    (Form::Persistent(_), 0) => "Departure".to_owned(),
+                    (Form::Persistent(_), _) => "Weight of a shock".to_owned(),
+                    _ => format!("State {}", c + 1),
+                };
+                sheet.text(first - 1, rate + 2 + c as u32, Style::Heading, heading);
             }
         }
         sheet.text(first - 1, combined, Style::Heading, "Factor at n");
         for n in 0..=route.years as u32 {
             let row = first + n;
             sheet.number(row, 0, Style::Year, f64::from(n));
-            for (k, (_, form)) in route.parts.iter().enumerate() {
-                let Form::Chain { bands, .. } = form else { continue };
-                let (rate, factor) = (1 + 2 * k as u32, 2 + 2 * k as u32);
-                if n == 0 {
-                    sheet.number(row, factor, Style::Factor, 1.0);
-                    continue;
-                }
-                let top = self.row(k) + 4;
-                let end = top + bands.len() as u32 - 1;
-                let text =
-                    format!("LOOKUP({}-1,{},{})", at(row, 0), span(top, 0, end, 0), span(top, 2, end, 2));
-                sheet.formula(row, rate, Style::Rate, text, Cached::Number(form.yearly(n as usize)));
-                let text = format!("{}/(1+{})", at(row - 1, factor), at(row, rate));
-                sheet.formula(row, factor, Style::Factor, text, Cached::Number(route.chain(k)[n as usize]));
+            for (k, (_, form)) in route.parts.iter().enumerate().filter(|(_, (_, form))| form.is_chain()) {
+                self.year(sheet, route, k, form, n);
             }
             // The last year only closes the chain: a fraction of it is never asked for.
             if n < route.years as u32 {
@@ -293,6 +323,54 @@ impl Rebuilt {
             }
         }
     }
+
+    /// One year of a chain: what it rests on, its rate, and the chain itself.
+    fn year(&self, sheet: &mut Sheet, route: &Route, k: usize, form: &Form, n: u32) {
+        let (row, rate) = (self.top + self.grid + n, column(route, k));
+        let (factor, held) = (rate + 1, rate + 2);
+        let top = self.row(k);
+        let columns = route.columns(k);
+        let states = |row: u32| span(row, held, row, held + columns.len() as u32 - 1);
+        let input = |row: u32| at(top + row, 1);
+        let inputs: Vec<String> = (1..=6).map(input).collect();
+        for (c, values) in columns.iter().enumerate() {
+            let col = held + c as u32;
+            let before = if n == 0 { String::new() } else { at(row - 1, col) };
+            let text = match form {
+                Form::Regimes(growth) => {
+                    let own = top + 4 + c as u32;
+                    let into = span(own, 4, own, 3 + growth.states.len() as u32);
+                    let cells = [at(own, 1), at(own, 2), at(own, 3), into];
+                    let before = if n == 0 { String::new() } else { states(row - 1) };
+                    Regimes::column(n, &inputs[1], &cells, &before)
+                }
+                _ => Persistent::column(c, n, &inputs, &before),
+            };
+            sheet.formula(row, col, Style::Exact, text, Cached::Number(values[n as usize]));
+        }
+        if n == 0 {
+            sheet.number(row, factor, Style::Factor, 1.0);
+            return;
+        }
+        let text = match form {
+            Form::Persistent(_) => Persistent::rate_formula(&inputs, &[at(row, held), at(row, held + 1)]),
+            Form::Regimes(_) => Regimes::rate_formula(&inputs[0], &states(row - 1), &states(row)),
+            _ => {
+                let bands = if let Form::Chain { bands, .. } = form { bands.len() as u32 } else { 0 };
+                let (from, to) = (top + 4, top + 3 + bands);
+                format!("LOOKUP({}-1,{},{})", at(row, 0), span(from, 0, to, 0), span(from, 2, to, 2))
+            }
+        };
+        sheet.formula(row, rate, Style::Rate, text, Cached::Number(route.yearly(k, n as usize)));
+        let text = format!("{}/(1+{})", at(row - 1, factor), at(row, rate));
+        sheet.formula(row, factor, Style::Factor, text, Cached::Number(route.chain(k)[n as usize]));
+    }
+}
+
+/// The grid's column of a part's yearly rate, its chain after it, then what these rest on; of the number of parts, the
+/// column after them all.
+fn column(route: &Route, part: usize) -> u32 {
+    1 + (0..part).map(|k| 2 + route.columns(k).len() as u32).sum::<u32>()
 }
 
 fn headings(sheet: &mut Sheet, row: u32, texts: &[&str]) {
@@ -307,6 +385,8 @@ fn words(form: &Form) -> &'static str {
         Form::Rate { continuous: true, .. } => "One rate: exp(-r t)",
         Form::Gamma { .. } => "Gamma: (1 + t s^2/m)^-(m^2/s^2)",
         Form::Chain { .. } => "Yearly chain: C(n) = C(n-1)/(1 + r(n))",
+        Form::Persistent(_) => "Yearly chain: r(n) = exp(rho + eta (m + y(n)) - (eta s w(n))^2/2) - 1",
+        Form::Regimes(_) => "Yearly chain: r(n) = exp(rho) (sum of states at n-1)/(sum at n) - 1",
         Form::Steps(_, None) => "Whole horizon by flow, stepped: (1 + r(t))^-t",
         Form::Steps(_, Some(_)) => "Whole horizon by length, stepped: (1 + r(T))^-t",
         Form::Points(_, None) => "Whole horizon by flow, interpolated: (1 + r(t))^-t",

@@ -1,9 +1,11 @@
 //! The second route to a factor: yearly chains and closed forms, in plain floating point and as cells.
 //!
 //! It shares nothing with the library's own arithmetic but the stated basis. What it cannot rebuild
-//! (tables, persistent growth, edges within a year) it leaves out, and the checks say so.
+//! (tables, edges within a year) it leaves out, and the checks say so.
 
 use hence_core::{Band, Compounding, Edge, HorizonRule, Spec, Where};
+
+use super::growth_route::{Columns, Persistent, Regimes};
 
 /// How a yearly rate follows from its inputs.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -89,6 +91,10 @@ pub enum Form {
         /// (offset after which the band begins, rate or growth rate), increasing.
         bands: Vec<(f64, f64)>,
     },
+    /// A yearly chain under log growth that persists; nothing before the base.
+    Persistent(Persistent),
+    /// A yearly chain under growth that switches between states; nothing before the base.
+    Regimes(Regimes),
     /// (1 + r(t))^-t with r stepped: (last offset of the band, rate).
     Steps(Vec<(f64, f64)>, Option<f64>),
     /// (1 + r(t))^-t with r interpolated: (offset, rate).
@@ -103,9 +109,17 @@ pub const BEYOND: f64 = 1e6;
 pub struct Route {
     /// (weight, form); weights sum to 1.
     pub parts: Vec<(f64, Form)>,
-    chains: Vec<Vec<f64>>,
+    grids: Vec<Grid>,
     /// The last year of the yearly chains.
     pub years: usize,
+}
+
+/// What a form needs of every year, from year 0: nothing where it has a closed form.
+#[derive(Clone, Debug, Default, PartialEq)]
+struct Grid {
+    columns: Columns,
+    rates: Vec<f64>,
+    chain: Vec<f64>,
 }
 
 impl Route {
@@ -119,7 +133,7 @@ impl Route {
                 Form::Chain { bands, .. } => {
                     bands.iter().all(|b| whole(b.0)) && (lowest >= 0.0 || bands.iter().all(|b| b.0 >= 0.0))
                 }
-                Form::Steps(..) | Form::Points(..) => lowest >= 0.0,
+                Form::Steps(..) | Form::Points(..) | Form::Persistent(_) | Form::Regimes(_) => lowest >= 0.0,
                 _ => true,
             };
             if !fits {
@@ -127,64 +141,84 @@ impl Route {
             }
         }
         let years = reach.max(1.0).ceil() as usize + 1;
-        let chains = parts.iter().map(|(_, form)| chain(form, years)).collect();
-        Some(Route { parts, chains, years })
+        let grids = parts.iter().map(|(_, form)| form.grid(years)).collect();
+        Some(Route { parts, grids, years })
     }
 
     /// The factor at offset `t`, at most [`Route::years`] - 1.
     pub fn factor(&self, t: f64) -> f64 {
-        self.parts.iter().zip(&self.chains).map(|((w, form), chain)| w * form.factor(t, chain)).sum()
+        self.parts.iter().zip(&self.grids).map(|((w, form), grid)| w * form.factor(t, grid)).sum()
     }
 
     /// The factor of one part at offset `t`, without its weight.
     pub fn part_factor(&self, part: usize, t: f64) -> f64 {
-        self.parts[part].1.factor(t, &self.chains[part])
+        self.parts[part].1.factor(t, &self.grids[part])
     }
 
     /// The yearly chain of a part, from year 0; empty where it is not a chain.
     pub fn chain(&self, part: usize) -> &[f64] {
-        &self.chains[part]
+        &self.grids[part].chain
+    }
+
+    /// The rate of a part's chain in a year from 1 on.
+    pub fn yearly(&self, part: usize, n: usize) -> f64 {
+        self.grids[part].rates[n]
+    }
+
+    /// What else stands in the yearly grid of a part, by column from year 0.
+    pub(super) fn columns(&self, part: usize) -> &Columns {
+        &self.grids[part].columns
     }
 }
 
 impl Form {
-    fn factor(&self, t: f64, chain: &[f64]) -> f64 {
+    fn factor(&self, t: f64, grid: &Grid) -> f64 {
         match self {
             Form::Rate { rule, preferences, x, continuous } => {
                 let rate = rule.rate(*x, *preferences);
                 if *continuous { (-rate * t).exp() } else { (1.0 + rate).powf(-t) }
             }
             Form::Gamma { mean, sd } => (1.0 + t * sd * sd / mean).powf(-(mean * mean / (sd * sd))),
-            Form::Chain { .. } if t < 0.0 => (1.0 + self.yearly(1)).powf(-t),
-            Form::Chain { .. } => {
+            Form::Chain { .. } if t < 0.0 => (1.0 + grid.rates[1]).powf(-t),
+            Form::Chain { .. } | Form::Persistent(_) | Form::Regimes(_) => {
                 let n = t.floor();
-                chain[n as usize] / (1.0 + self.yearly(n as usize + 1)).powf(t - n)
+                grid.chain[n as usize] / (1.0 + grid.rates[n as usize + 1]).powf(t - n)
             }
             Form::Steps(bands, at) => (1.0 + stepped(bands, at.unwrap_or(t))).powf(-t),
             Form::Points(points, at) => (1.0 + interpolated(points, at.unwrap_or(t))).powf(-t),
         }
     }
 
-    /// The rate of year n of a chain.
-    pub fn yearly(&self, n: usize) -> f64 {
-        match self {
+    /// Whether it is a yearly chain.
+    pub fn is_chain(&self) -> bool {
+        matches!(self, Form::Chain { .. } | Form::Persistent(_) | Form::Regimes(_))
+    }
+
+    fn grid(&self, years: usize) -> Grid {
+        let columns = match self {
+            Form::Persistent(growth) => growth.columns(years),
+            Form::Regimes(growth) => growth.columns(years),
+            Form::Chain { .. } => Vec::new(),
+            _ => return Grid::default(),
+        };
+        let rate = |n: usize| match self {
+            Form::Persistent(growth) => growth.rate(&columns, n),
+            Form::Regimes(growth) => growth.rate(&columns, n),
             Form::Chain { rule, preferences, bands } => {
                 let before = n as f64 - 1.0;
                 let band = bands.iter().rev().find(|b| b.0 <= before).unwrap_or(&bands[0]);
                 rule.rate(band.1, *preferences)
             }
             _ => 0.0,
+        };
+        // Year 0 has no rate.
+        let (mut rates, mut chain) = (vec![0.0], vec![1.0]);
+        for n in 1..=years {
+            rates.push(rate(n));
+            chain.push(chain[n - 1] / (1.0 + rates[n]));
         }
+        Grid { columns, rates, chain }
     }
-}
-
-fn chain(form: &Form, years: usize) -> Vec<f64> {
-    let Form::Chain { .. } = form else { return Vec::new() };
-    let mut factors = vec![1.0];
-    for n in 1..=years {
-        factors.push(factors[n - 1] / (1.0 + form.yearly(n)));
-    }
-    factors
 }
 
 /// The rate of the first band whose last offset is not before `t`.
@@ -235,6 +269,32 @@ fn collect(spec: &Spec, at: &Where, weight: f64, parts: &mut Vec<(f64, Form)>) -
                 };
                 Form::Chain { rule, preferences, bands: lower_edges(growth, at, 0.0)? }
             }
+        }
+        Spec::UncertainGrowth {
+            preference,
+            hazard,
+            elasticity,
+            mean,
+            sd,
+            log: true,
+            persistence: Some(persistence),
+            ..
+        } => Form::Persistent(Persistent {
+            rho: preference + hazard,
+            eta: *elasticity,
+            mean: *mean,
+            sd: *sd,
+            persistence: *persistence,
+        }),
+        Spec::GrowthRegimes { preference, hazard, elasticity, states, transition, start } => {
+            let column = |j: usize| transition.iter().map(|row| row.get(j).copied()).collect();
+            Form::Regimes(Regimes {
+                rho: preference + hazard,
+                eta: *elasticity,
+                states: states.clone(),
+                into: (0..states.len()).map(column).collect::<Option<_>>()?,
+                start: start.clone(),
+            })
         }
         Spec::UncertainGrowth {
             preference,

@@ -13,6 +13,8 @@ pub enum ChartKind {
     Lines,
     /// Columns over labels.
     Columns,
+    /// Bars beside labels, the first on top.
+    Bars,
 }
 
 /// One series of a chart.
@@ -47,6 +49,7 @@ impl Chart {
         let mut chart = book.add_chart(match self.kind {
             ChartKind::Lines => ChartType::ScatterStraight,
             ChartKind::Columns => ChartType::Column,
+            ChartKind::Bars => ChartType::Bar,
         });
         chart.add_title(&super::legal(&self.title))?;
         for series in &self.series {

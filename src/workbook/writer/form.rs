@@ -234,6 +234,11 @@ pub fn form(sheets: &[Form], names: &[(String, SheetRange)]) -> Result<Vec<u8>> 
     written.map_err(|e| failed("the workbook cannot be written", &e))?;
     closed.map_err(|e| unwritten("the workbook cannot be written", &e))?;
     let bytes = std::fs::read(path).map_err(|e| unwritten("the workbook cannot be read back", &e))?;
+    unstamped(bytes)
+}
+
+/// A workbook without the time at which it was made: the same bytes every time.
+pub(super) fn unstamped(bytes: Vec<u8>) -> Result<Vec<u8>> {
     let package = Package::from_bytes("form.xlsx", bytes)?;
     let replace = BTreeMap::from([(STAMPED.to_owned(), UNSTAMPED.as_bytes().to_vec())]);
     package.write(&Changes { replace, ..Changes::default() })

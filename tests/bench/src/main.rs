@@ -1,8 +1,12 @@
-//! Benchmarks: factors per second, and filling workbooks of a million cells. `bash tests/bench/run` writes RESULTS.md.
+//! Benchmarks: factors and calls per second, draws, cells of LibreOffice, and filling workbooks of a million cells.
+//! `bash tests/bench/run` writes RESULTS.md.
 
 /// The large workbooks, shared with the tests of the workbook crate.
 #[path = "../../workbook/large.rs"]
 mod books;
+mod calc;
+mod calls;
+mod draws;
 
 use std::path::Path;
 use std::time::{Duration, Instant};
@@ -15,8 +19,10 @@ const OFFSETS: usize = 1_000_000;
 fn main() {
     let args: Vec<String> = std::env::args().collect();
     match args.get(1).map(String::as_str) {
+        Some("draws") => draws::draws(),
         // A fill in a process of its own, so that its peak memory is its own.
         Some("fill") => fill(Path::new(&args[2])),
+        Some("calc") => calc::calc(),
         Some("make") => {
             books::make(
                 Path::new(&args[2]),
@@ -26,6 +32,9 @@ fn main() {
         }
         _ => {
             factors();
+            calls::calls();
+            draws::draws();
+            calc::calc();
             fills();
         }
     }

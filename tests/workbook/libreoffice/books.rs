@@ -98,6 +98,8 @@ pub const CASES: &[Case] = {
         case("preference 1%, elasticity 2, growth 2% to 20, 1% after; exact", "flows middle, base start", Fy, false, true),
         case("preference 1%, elasticity 2, growth 2% sd 3.6%", "flows end", Calendar, false, true),
         case("preference 1%, elasticity 2, log growth 2% sd 3.6%", "flows middle", Numbers, true, true),
+        case("preference 1%, elasticity 2, log growth 2% sd 3% persistence 0.7", "flows middle, base start", Calendar, true, true),
+        case("states-2026", "flows averaged, base start", Fy, false, true),
         with(case("gamma mean 4% sd 3%", "flows end", Calendar, true, true), 2, true),
         case("gamma mean 4% sd 3%", "flows averaged", Offsets, true, false),
         case("0.5 of (1%), 0.5 of (7% continuous)", "flows averaged", Calendar, false, false),
@@ -135,12 +137,21 @@ pub const CASES: &[Case] = {
     ]
 };
 
-/// The built-in schedules and a table of factors.
+/// The built-in schedules, a table of factors, and growth in two states.
 pub fn catalogue() -> Catalogue {
     let table = "id = \"factors-2026\"\ntitle = \"Factors made up for a test\"\nbody = \"Nobody\"\nyear = 2026\n\
                  place = \"this file\"\naddress = \"https://example.org\"\nstatus = \"current\"\ncomplete = true\n\
                  checked = \"not published\"\nnotes = \"\"\ntable = [[0, 1.0], [10, 0.8], [20, 0.7], [50, 0.5]]\n";
-    Catalogue::builtin().with(&[("factors-2026.toml".to_owned(), table.to_owned())]).expect("a schedule")
+    let states = table
+        .replace("factors-2026", "states-2026")
+        .split("table =")
+        .next()
+        .unwrap_or_default()
+        .to_owned()
+        + "[regimes]\npreference = 0.01\nelasticity = 2\nstart = [1, 0]\ntransition = [[0.9, 0.1], [0.4, 0.6]]\n\
+           states = [{ mean = 0.03, sd = 0.02 }, { mean = -0.02, sd = 0.04 }]\n";
+    let files = [("factors-2026.toml".to_owned(), table.to_owned()), ("states-2026.toml".to_owned(), states)];
+    Catalogue::builtin().with(&files).expect("schedules")
 }
 
 impl Case {

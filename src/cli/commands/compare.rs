@@ -1,0 +1,109 @@
+//! `hence compare`: the options under several bases, and where the decision switches.
+
+use std::path::PathBuf;
+
+use hence_core::Basis;
+use hence_workbook::compare::{CompareRequest, Comparison, book, compare};
+use hence_workbook::package::{may_write, same_file, write_atomically};
+use hence_workbook::problem::{Place, Problem, Result as BookResult};
+use hence_workbook::report::Status;
+
+use crate::args::Compare;
+use crate::outputs::{Output, stream};
+use crate::progress::Progress;
+use crate::terminal::{self, Terminal};
+use crate::{Failure, Outcome, comparison, input, render};
+
+/// Compares, prints, and writes the tables where asked.
+pub fn run(args: &Compare, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
+    let catalogue = super::catalogue(schedules)?;
+    for line in &args.against {
+        Basis::parse(line, &catalogue).map_err(|error| super::typed(&error, line))?;
+    }
+    let request = CompareRequest { against: args.against.clone(), roles: super::fill::roles(&args.roles)? };
+    let output = output(args)?;
+    let shown = input::shown(&args.book);
+    let progress = Progress::start();
+    progress.doing(&format!("comparing {shown}"));
+    let compared = may(args, output.as_ref()).and_then(|()| {
+        let package = input::open(&args.book)?;
+        let found = compare(&package, &request, &catalogue)?;
+        let bytes = output.as_ref().map(|_| book(&package, &found)).transpose()?;
+        if let (Some(Output::File(path)), Some(bytes)) = (&output, &bytes) {
+            write_atomically(path, bytes, args.force)?;
+        }
+        Ok((found, bytes))
+    });
+    drop(progress);
+    match compared {
+        Ok((found, bytes)) => {
+            render::problems(terminal, &shown, &found.problems);
+            print(args, &shown, output.as_ref(), &found, terminal)?;
+            if let (Some(Output::Stream), Some(bytes)) = (&output, bytes) {
+                stream(&bytes)?;
+            }
+            Ok(if found.status() == Status::Done { Outcome::Done } else { Outcome::Wrong })
+        }
+        Err(error) => {
+            render::problems(terminal, &shown, error.problems());
+            if args.json {
+                terminal::print(&comparison::failed(error.problems()))?;
+            }
+            Ok(Outcome::of(&error))
+        }
+    }
+}
+
+fn print(
+    args: &Compare,
+    shown: &str,
+    output: Option<&Output>,
+    found: &Comparison,
+    terminal: &Terminal,
+) -> Result<(), Failure> {
+    if args.json {
+        return terminal::print(&comparison::json(found));
+    }
+    if args.csv {
+        return terminal::print(&comparison::csv(found));
+    }
+    let text = comparison::text(shown, output.map(Output::shown).as_deref(), found);
+    if output == Some(&Output::Stream) {
+        terminal.tell(&text);
+        return Ok(());
+    }
+    terminal::print(&text)
+}
+
+/// Where the tables go.
+fn output(args: &Compare) -> Result<Option<Output>, Failure> {
+    let Some(path) = &args.out else { return Ok(None) };
+    let output = Output::named(path)?;
+    if output == Output::Stream && (args.json || args.csv) {
+        return Err(Failure::Message(
+            "--out - and --json or --csv both want standard output\nTry: --out with a file".to_owned(),
+        ));
+    }
+    if let Output::File(path) = &output
+        && !path.extension().is_some_and(|e| e.eq_ignore_ascii_case("xlsx"))
+    {
+        return Err(Failure::Message(format!(
+            "--out {}: the tables are an .xlsx file\nTry: --out {}",
+            path.display(),
+            path.with_extension("xlsx").display()
+        )));
+    }
+    Ok(Some(output))
+}
+
+/// The input is never written, and an existing file needs `--force`.
+fn may(args: &Compare, output: Option<&Output>) -> BookResult<()> {
+    let Some(Output::File(path)) = output else { return Ok(()) };
+    if !input::is_dash(&args.book) && same_file(&args.book, path) {
+        let message = format!("the output {} is the input, which is never written", path.display());
+        return Err(Problem::error("output-is-input", Place::default(), message)
+            .hint("give --out another name")
+            .into());
+    }
+    may_write(path, args.force)
+}

@@ -1,0 +1,220 @@
+//! The sensitivity sheet: other rates, switching values, streams by their effect, and where the rate comes from.
+
+mod derivation;
+mod streams;
+mod switching;
+
+use super::AuditInput;
+use super::checks::{Checks, absolute_cell};
+use super::discounting::table_ref;
+use super::lines::UNCHECKED;
+use super::nets::Nets;
+use crate::compare::{Sensitivity, Side, Why};
+use crate::formulas::absolute;
+use crate::graft::ChartFinish;
+use crate::layout::{Column, Layout};
+use crate::patch::Cached;
+use crate::references::{Cell, Range};
+use crate::writer::{Sheet, Style};
+
+/// Flat yearly rates of the table.
+const FLAT: [f64; 9] = [0.0, 0.01, 0.02, 0.03, 0.04, 0.05, 0.06, 0.08, 0.1];
+
+/// What stands where there is no number.
+const NO_VALUE: &str = "no value";
+
+/// The sheet while it is made.
+struct Page<'a> {
+    sheet: Sheet,
+    row: u32,
+    input: &'a AuditInput<'a>,
+    layout: &'a Layout,
+    nets: &'a [Option<Nets>],
+    told: &'a Sensitivity,
+    finishes: Vec<ChartFinish>,
+}
+
+/// Makes the sheet and what its charts need to be finished.
+pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout, checks: &Checks) -> (Sheet, Vec<ChartFinish>) {
+    let mut sheet = Sheet::new(&input.names.sensitivity);
+    let options = input.appraisal.choices.len() as u32;
+    sheet.columns(0, 0, 44.0);
+    sheet.columns(1, (options + 2).max(7), 19.0);
+    sheet.columns(options + 2, options + 2, 26.0);
+    sheet.text(0, 0, Style::Title, "Audit sensitivity");
+    let words = "What the options come to on other rates, where the decision switches, which streams move it most, and \
+                 where the rate comes from. Numbers marked live are formulas over the cells of the workbook; the others \
+                 are as computed at the fill.";
+    sheet.paragraph(1, 0, 6, Style::Wrapped, words);
+    let told = input.sensitivity;
+    let mut page = Page { sheet, row: 3, input, layout, nets: &checks.nets, told, finishes: Vec::new() };
+    page.rates();
+    page.switching();
+    page.derivations();
+    page.streams();
+    (page.sheet, page.finishes)
+}
+
+impl Page<'_> {
+    fn section(&mut self, title: &str, words: &str) {
+        self.sheet.text(self.row, 0, Style::Section, title);
+        self.row += 1;
+        if !words.is_empty() {
+            self.sheet.paragraph(self.row, 0, 6, Style::Wrapped, words);
+            self.row += 1;
+        }
+    }
+
+    fn headings(&mut self, headings: &[&str]) {
+        for (i, heading) in headings.iter().enumerate() {
+            self.sheet.text(self.row, i as u32, Style::Heading, heading);
+        }
+        self.row += 1;
+    }
+
+    fn options(&self) -> u32 {
+        self.input.appraisal.choices.len() as u32
+    }
+
+    /// Net present values under other rates.
+    fn rates(&mut self) {
+        let over = self.input.appraisal.baseline.map(|i| &self.input.appraisal.choices[i].name);
+        let over = over.map(|name| format!(" over {name}")).unwrap_or_default();
+        self.section(
+            "Other rates",
+            &format!(
+                "Net present value{over}. Best is the option with the highest, if no other has as much."
+            ),
+        );
+        let heading = self.row;
+        let names: Vec<&str> =
+            self.input.appraisal.choices.iter().map(|choice| choice.name.as_str()).collect();
+        self.headings(&[&["Basis"], names.as_slice(), &["Best", "Checked"]].concat());
+        let sides = &self.told.comparison.sides;
+        for side in sides.iter().filter(|side| side.why == Why::Declared) {
+            self.sheet.text(self.row, 0, Style::Wrapped, format!("Declared: {}", side.basis));
+            for (c, outcome) in self.input.outcomes.iter().enumerate() {
+                let text = table_ref(
+                    &self.input.names.sensitivity,
+                    self.layout,
+                    self.layout.sums(c).net,
+                    Column::Value,
+                );
+                let result = Cached::Number(outcome.totals().npv);
+                self.sheet.formula(self.row, c as u32 + 1, Style::Money, text, result);
+            }
+            self.ends(heading, "live", &npv(side));
+        }
+        for (by, npv) in &self.told.shifted {
+            let moved = if *by < 0.0 { "lower" } else { "higher" };
+            let text = format!("Declared, every rate a point {moved} (of a Ramsey basis its preference)");
+            self.fixed(heading, &text, npv.as_deref());
+        }
+        for side in sides.iter().filter(|side| side.why != Why::Declared) {
+            let why = if side.why == Why::Companion { "Companion" } else { "Against" };
+            self.fixed(heading, &format!("{why}: {}", side.basis), Some(&npv(side)));
+        }
+        self.sheet.text(self.row, 0, Style::Strong, "Flat yearly rate in place of the basis:");
+        self.row += 1;
+        for rate in FLAT {
+            self.flat(heading, rate);
+        }
+        self.row += 1;
+    }
+
+    /// A row of numbers as computed at the fill.
+    fn fixed(&mut self, heading: u32, label: &str, npv: Option<&[f64]>) {
+        self.sheet.text(self.row, 0, Style::Wrapped, label);
+        let Some(npv) = npv.filter(|npv| npv.iter().all(|x| x.is_finite())) else {
+            self.sheet.text(self.row, 1, Style::Wrapped, NO_VALUE);
+            self.row += 1;
+            return;
+        };
+        for (c, x) in npv.iter().enumerate() {
+            self.sheet.number(self.row, c as u32 + 1, Style::Money, *x);
+        }
+        self.ends(heading, UNCHECKED, npv);
+    }
+
+    /// A row at a flat rate: live where the net flows are.
+    fn flat(&mut self, heading: u32, rate: f64) {
+        self.sheet.number(self.row, 0, Style::Rate, rate);
+        let home = self.input.names.sensitivity.clone();
+        let cell = format!("$A{}", self.row + 1);
+        let base = self.input.appraisal.baseline;
+        let mut values = Vec::new();
+        for c in 0..self.input.appraisal.choices.len() {
+            let live = self.net_at(&home, c, base, &cell, rate);
+            match live.filter(|(_, x, _)| x.is_finite()) {
+                Some((text, x, _)) => {
+                    self.sheet.formula(self.row, c as u32 + 1, Style::Money, text, Cached::Number(x));
+                    values.push(x);
+                }
+                None => {
+                    self.sheet.text(self.row, c as u32 + 1, Style::Instead, self.why_not(c));
+                }
+            }
+        }
+        if values.len() == self.input.appraisal.choices.len() {
+            self.ends(heading, "live", &values);
+        } else {
+            self.row += 1;
+        }
+    }
+
+    /// Why an option has no live value at a flat rate.
+    fn why_not(&self, c: usize) -> &'static str {
+        let options = std::iter::once(c).chain(self.input.appraisal.baseline);
+        let own = |c: usize| self.input.outcomes[c].streams.iter().any(|stream| stream.own.is_some());
+        if options.into_iter().any(own) { "a stream has its own basis" } else { "flows follow the last year" }
+    }
+
+    /// The net present value of an option, less that of another, at a flat rate: formula, number, and gross present value.
+    fn net_at(
+        &self,
+        home: &str,
+        c: usize,
+        less: Option<usize>,
+        cell: &str,
+        rate: f64,
+    ) -> Option<(String, f64, f64)> {
+        if less == Some(c) {
+            return Some(("0".to_owned(), 0.0, 0.0));
+        }
+        let own = self.nets[c].as_ref()?;
+        let (net, gross) = own.value(rate);
+        let text = own.formula(home, cell);
+        let Some(base) = less else { return Some((text, net, gross)) };
+        let base = self.nets[base].as_ref()?;
+        let (less, more) = base.value(rate);
+        Some((format!("{text}-{}", base.formula(home, cell)), net - less, gross + more))
+    }
+
+    /// The best option of a row, live, and how its numbers stand.
+    fn ends(&mut self, heading: u32, checked: &str, npv: &[f64]) {
+        let count = self.options();
+        let cells =
+            |row: u32| absolute(Range { first: Cell { row, col: 1 }, last: Cell { row, col: count } });
+        let (row, names) = (cells(self.row), cells(heading));
+        let text =
+            format!("IF(COUNTIF({row},MAX({row}))>1,\"several\",INDEX({names},1,MATCH(MAX({row}),{row},0)))");
+        let most = npv.iter().copied().fold(f64::NEG_INFINITY, f64::max);
+        let first: Vec<usize> = (0..npv.len()).filter(|&i| npv[i] == most).collect();
+        let best = match first.as_slice() {
+            [i] => self.input.appraisal.choices[*i].name.clone(),
+            _ => "several".to_owned(),
+        };
+        self.sheet.formula(self.row, count + 1, Style::Instead, text, Cached::Text(best));
+        self.sheet.text(self.row, count + 2, Style::Result, checked);
+        self.row += 1;
+    }
+
+    /// The cell of a column in the present row.
+    fn here(&self, col: u32) -> String {
+        absolute_cell(self.row, col)
+    }
+}
+
+fn npv(side: &Side) -> Vec<f64> {
+    side.standings.iter().map(|standing| standing.totals.npv).collect()
+}
