@@ -37,6 +37,8 @@ pub struct OwnBasis {
     pub factors: Vec<f64>,
     /// Forward rate of each year, as for an option.
     pub forward: Vec<Option<f64>>,
+    /// The timing as a sentence with its numbers.
+    pub timing_sentence: String,
 }
 
 /// Totals of an option, or of its increment over the baseline.

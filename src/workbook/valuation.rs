@@ -278,7 +278,8 @@ fn own_basis(
     }
     let factors = factors(axis, clock, &curve)?;
     let forward = clock.offsets.iter().map(|t| yearly_rate(&curve, *t)).collect();
-    Ok(Some(OwnBasis { basis, curve, factors, forward }))
+    let timing_sentence = sentence(axis, clock, &factors);
+    Ok(Some(OwnBasis { basis, curve, factors, forward, timing_sentence }))
 }
 
 /// The forward rate of the year that holds an offset. At the base and before it the first rate extends backwards,

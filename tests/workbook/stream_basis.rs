@@ -68,6 +68,9 @@ fn a_stream_is_discounted_on_its_own_basis() {
     let own: Vec<(&str, &str)> =
         option.stream_bases.iter().map(|(s, b, _)| (s.as_str(), b.as_str())).collect();
     assert_eq!(own, [("health", "1%")]);
+    // Its factors are told as they are: a flow of health in 2026 has 1/1.01.
+    let told = held.values().any(|cell| cell.to_string().contains("in 2026 0.9901"));
+    assert!(told, "the timing of the stream's own basis");
     // The mean time weighs each flow by its own factor.
     let gross = 100.0 + access + health;
     close(option.mean_time.unwrap(), (first + 2.0 * second) / gross);

@@ -51,15 +51,15 @@ fn block(sheet: &mut Sheet, input: &AuditInput<'_>, layout: &Layout, k: usize) {
     let choice = &input.appraisal.choices[block.choice];
     let outcome = &input.outcomes[block.choice];
     let basis = block_basis(input, block);
-    let (factors, forward) = match block.stream.and_then(|s| outcome.streams[s].own.as_ref()) {
-        Some(own) => (&own.factors, &own.forward),
-        None => (&outcome.factors, &outcome.forward),
+    let (factors, forward, timing) = match block.stream.and_then(|s| outcome.streams[s].own.as_ref()) {
+        Some(own) => (&own.factors, &own.forward, &own.timing_sentence),
+        None => (&outcome.factors, &outcome.forward, &outcome.timing_sentence),
     };
     let (first, last) = (block.column, block.column + 3);
     let canonical = format!("Basis: {} ({})", basis.canonical(), layout.whose(k, input.appraisal));
     sheet.paragraph(BASIS_ROW, first, last, Style::Strong, canonical);
     sheet.paragraph(WORDS_ROW, first, last, Style::Wrapped, basis.words());
-    let timing = format!("Base {}; {}.", outcome.base_words, outcome.timing_sentence.trim_end_matches('.'));
+    let timing = format!("Base {}; {}.", outcome.base_words, timing.trim_end_matches('.'));
     sheet.paragraph(TIMING_ROW, first, last, Style::Wrapped, timing);
     for (i, heading) in ["Year", "Offset (years)", "Forward rate", "Factor"].iter().enumerate() {
         sheet.text(HEADING_ROW, first + i as u32, Style::Heading, heading);

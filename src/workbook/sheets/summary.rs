@@ -167,8 +167,9 @@ impl Page {
             self.section(&format!("Basis of {}", layout.whose(k, input.appraisal)));
             self.pair("Basis", &format!("{} (from {from})", basis.canonical()));
             self.pair("In words, with its source", &basis.words());
-            if block.stream.is_some() {
-                // Base, timing and prices are its option's.
+            if let Some(own) = block.stream.and_then(|stream| outcome.streams[stream].own.as_ref()) {
+                // Base and prices are its option's.
+                self.pair("Timing", &own.timing_sentence);
                 self.row += 1;
                 continue;
             }
