@@ -145,6 +145,12 @@ pub struct Compare {
     /// Give a role to cells without a defined name
     #[arg(long = "role", value_name = "ROLE=RANGE")]
     pub roles: Vec<String>,
+    /// Map which option is best where, over two parts of a Ramsey basis
+    #[arg(long, value_name = "PARTS")]
+    pub map: Option<MapOver>,
+    /// Draw the map as a picture (.svg)
+    #[arg(long, value_name = "FILE", requires = "map")]
+    pub picture: Option<PathBuf>,
     /// Write the tables into a workbook of their own (.xlsx); - for standard output
     #[arg(long, value_name = "FILE")]
     pub out: Option<PathBuf>,
@@ -157,6 +163,17 @@ pub struct Compare {
     /// Replace an existing output
     #[arg(long)]
     pub force: bool,
+}
+
+/// The two parts of the rate that a map is over.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+pub enum MapOver {
+    /// Preference across, elasticity up
+    #[value(name = "preference,elasticity")]
+    Elasticity,
+    /// Preference across, growth up
+    #[value(name = "preference,growth")]
+    Growth,
 }
 
 #[derive(Debug, Args)]

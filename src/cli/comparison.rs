@@ -1,7 +1,9 @@
 //! A comparison as text, comma-separated values and JSON.
 
 use hence_core::Parameter;
-use hence_workbook::compare::{Comparison, Entry, Moved, change_words, heading, remark, shown, words};
+use hence_workbook::compare::{
+    Comparison, Entry, Map, Moved, change_words, heading, map_words, option_letter, remark, shown, words,
+};
 use hence_workbook::problem::Problem;
 use serde_json::{Value, json};
 
@@ -56,9 +58,28 @@ pub fn json(found: &Comparison) -> String {
         })
         .collect();
     let problems: Vec<Found> = found.problems.iter().map(Found::from).collect();
+    let map = found.map.as_ref().map(|map| {
+        let best: Vec<Vec<Option<&str>>> = (0..map.ys.len())
+            .map(|j| (0..map.xs.len()).map(|i| map.best(i, j).and_then(|best| best.0).map(name)).collect())
+            .collect();
+        let zero: Vec<Value> = map
+            .zero
+            .iter()
+            .flat_map(|row| {
+                let up = map.ys[row.up];
+                row.values.iter().zip(&row.open).enumerate().map(move |(option, (values, open))| {
+                    json!({"option": name(option), "up": up, "preference": values, "settled": !open})
+                })
+            })
+            .collect();
+        json!({
+            "basis": map.basis, "across": "preference", "up": map.up.to_string(), "preference": map.xs,
+            map.up.to_string(): map.ys, "best": best, "zero": zero
+        })
+    });
     document(json!({
         "schema": 1, "results": results, "switching": switching, "bases": bases, "baseline": found.baseline.map(name),
-        "ramsey": found.ramsey, "changes": changes, "problems": problems, "caution": hence_core::CAUTION
+        "ramsey": found.ramsey, "map": map, "changes": changes, "problems": problems, "caution": hence_core::CAUTION
     }))
 }
 
@@ -169,6 +190,7 @@ pub fn text(input: &str, output: Option<&str>, found: &Comparison) -> String {
         text.push_str(&format!("  {why}\n"));
     }
     text.push_str(&switching(found));
+    text.push_str(&found.map.as_ref().map(|map| map_text(found, map)).unwrap_or_default());
     text.push_str(&format!("\n{}.\n{}\n", words(found).trim_end_matches('.'), hence_core::CAUTION));
     escape(&text)
 }
@@ -235,6 +257,31 @@ fn switching(found: &Comparison) -> String {
         }
     }
     text + &left_table(&rows)
+}
+
+/// Every so many points of the map are shown on a terminal, across and up.
+const EVERY: (usize, usize) = (8, 6);
+
+/// The map in letters.
+fn map_text(found: &Comparison, map: &Map) -> String {
+    let up = Moved::Parameter(map.up);
+    let columns: Vec<usize> = (0..map.xs.len()).step_by(EVERY.0).collect();
+    let mut rows = Vec::new();
+    for j in (0..map.ys.len()).step_by(EVERY.1).rev() {
+        let cells = columns.iter().map(|&i| map.letter(i, j));
+        rows.push(std::iter::once(shown(&up, map.ys[j])).chain(cells).collect::<Vec<_>>());
+    }
+    let preferences = columns.iter().map(|&i| shown(&Moved::Parameter(Parameter::Preference), map.xs[i]));
+    rows.push(std::iter::once(String::new()).chain(preferences).collect());
+    let options = found.options.iter().enumerate();
+    let options: Vec<String> = options.map(|(i, name)| format!("{} {name}", option_letter(i))).collect();
+    format!(
+        "\nBest option by preference (across) and {} (up): {}\n{}{}\n",
+        map.up,
+        options.join(", "),
+        table(&rows),
+        map_words(map).replace(" A star: nearest to the basis as stated.", "")
+    )
 }
 
 fn in_capitals(word: &str) -> String {

@@ -270,6 +270,7 @@ pub const CODES: &[Code] = codes! {
         "date-1904": "The workbook counts days from 1904, so copied dates shift by 1,462 days.",
         "differs": "A formula in a target does not give the value of the declared basis.",
         "flow-follows": "The formulas of a stream depend, or may depend, on filled cells.",
+        "map-basis": "A map was asked for, and no basis is stated by preference, elasticity and growth.",
         "manual-calculation": "The workbook is set to manual calculation.",
         "many-references": "The workbook's formulas hold more references than are followed.",
         "no-formula": "A cell without a formula has no result to drop: a fault of hence, please report it.",

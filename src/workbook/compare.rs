@@ -1,9 +1,11 @@
 //! Options side by side under several bases, and where the decision switches.
 
+mod map;
+mod picture;
 mod search;
 mod tables;
 
-use hence_core::{Basis, Catalogue};
+use hence_core::{Basis, Catalogue, Parameter};
 
 use crate::appraisal::{Appraisal, COMMAND_LINE, Given};
 use crate::model::Workbook;
@@ -15,8 +17,10 @@ use crate::report::Status;
 use crate::resolve::{Options, resolve};
 use crate::valuation::{from_core, value};
 
-pub use tables::{book, change_words, heading, remark, shown, words};
+pub use tables::{book, change_words, heading, map_words, remark, shown, words};
 
+pub use map::{Map, ZeroRow, option_letter};
+pub use picture::picture;
 pub use search::{Change, Entry, MULTIPLIERS, Moved};
 use search::{npv_at, ramsey_basis, search};
 
@@ -27,6 +31,8 @@ pub struct CompareRequest {
     pub against: Vec<String>,
     /// Roles for cells without a defined name: role, range.
     pub roles: Vec<(String, String)>,
+    /// Make a map over preference and this part of the rate: elasticity or growth.
+    pub map: Option<Parameter>,
 }
 
 /// Why a basis takes part.
@@ -92,6 +98,8 @@ pub struct Comparison {
     pub switching: Vec<Entry>,
     /// Where the best option changes, as one parameter moves.
     pub changes: Vec<Change>,
+    /// Which option is best where, as parts of the rate move.
+    pub map: Option<Map>,
     /// Everything found.
     pub problems: Vec<Problem>,
 }
@@ -126,7 +134,8 @@ pub fn compare(package: &Package, request: &CompareRequest, catalogue: &Catalogu
     problems.extend(found);
     let declared = Valued { why: Why::Declared, appraisal, outcomes };
     let valued = value_all(declared, &request.against, catalogue, &mut problems)?;
-    Ok(comparison(&valued, problems))
+    let map = request.map.map(|up| Map::of(ramsey_basis(&valued), up)).transpose()?;
+    Ok(Comparison { map, ..comparison(&valued, problems) })
 }
 
 /// What the audit sheets tell of other rates.
@@ -182,6 +191,7 @@ fn comparison(valued: &[Valued], problems: Vec<Problem>) -> Comparison {
         ramsey: ramsey.map(|valued| valued.outcomes[0].basis.canonical()),
         switching,
         changes,
+        map: None,
         problems,
     }
 }

@@ -320,3 +320,94 @@ fn a_workbook_may_come_from_standard_input() {
     assert_eq!(code(&output), 0, "{}", stderr(&output));
     assert_eq!(json(&output)["results"].as_array().unwrap().len(), 2);
 }
+
+/// The map says of a point what a comparison on the basis of that point says; its zero lines are switching values there.
+#[test]
+fn a_map_agrees_with_the_basis_of_its_points() {
+    let (folder, book) = copy_of("mine-drainage.xlsx");
+    let book = book.to_str().unwrap();
+    let picture = folder.path().join("map.svg");
+    let args = [
+        "compare",
+        book,
+        "--against",
+        RAMSEY,
+        "--map",
+        "preference,elasticity",
+        "--picture",
+        picture.to_str().unwrap(),
+    ];
+    let output = run(&[&args[..], &["--json"]].concat());
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    let map = &json(&output)["map"];
+    let numbers = |key: &str| -> Vec<f64> {
+        map[key].as_array().unwrap().iter().map(|x| x.as_f64().unwrap()).collect()
+    };
+    let (preferences, elasticities) = (numbers("preference"), numbers("elasticity"));
+    assert_eq!((preferences[0], elasticities[0]), (0.0, 0.0));
+    let mut seen = std::collections::BTreeSet::new();
+    for (i, j) in [(0, 0), (20, 10), (40, 30), (70, 50)] {
+        let line =
+            format!("preference {}%, elasticity {}, growth 2%", preferences[i] * 100.0, elasticities[j]);
+        let there = compared(book, &[&line]);
+        assert_eq!(map["best"][j][i], there["bases"][1]["best"], "{line}");
+        seen.insert(there["bases"][1]["best"].to_string());
+    }
+    assert!(seen.len() >= 2, "the points are in several regions: {seen:?}");
+    // Up at an elasticity of 1.2: preference + 1.2 x 2% is the flat rate at which the option is worth as much.
+    let document = json(&output);
+    let rate = values(&document, "Lime plant", None, "rate")[0];
+    let zero = map["zero"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .find(|zero| zero["option"] == "Lime plant" && (zero["up"].as_f64().unwrap() - 1.2).abs() < 1e-9);
+    let zero = zero.expect("a row of the map at 1.2");
+    close(&[zero["preference"][0].as_f64().unwrap()], &[rate - 0.024]);
+    assert_eq!(zero["settled"], true);
+
+    // The picture is a document of its own, the same every time.
+    let svg = std::fs::read_to_string(&picture).unwrap();
+    assert!(svg.starts_with("<svg xmlns=\"http://www.w3.org/2000/svg\"") && svg.ends_with("</svg>\n"));
+    for part in [
+        "Best option by preference and elasticity",
+        RAMSEY,
+        ">Lime plant<",
+        "worth as much as Do nothing",
+        "stroke-dasharray",
+    ] {
+        assert!(svg.contains(part), "{part}");
+    }
+    assert_eq!(code(&run(&args)), 2, "an existing picture needs --force");
+    assert_eq!(code(&run(&[&args[..], &["--force"]].concat())), 0);
+    assert!(std::fs::read_to_string(&picture).unwrap() == svg);
+}
+
+#[test]
+fn a_map_stands_in_the_workbook_and_in_the_text() {
+    // Works of 1000, benefits of 600 twice: worth nothing where preference + elasticity x 2% is 13.066...%.
+    let book = plan(&[("C18", "530"), ("D18", "530")]);
+    let out = book.beside_arg("map.xlsx");
+    let args = ["compare", book.arg(), "--against", RAMSEY, "--map", "preference,growth", "--out", &out];
+    let output = run(&args);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    let text = stdout(&output);
+    assert!(text.contains("Best option by preference (across) and growth (up): A "), "{text}");
+    // 530 twice is worth 1000 at 3.97...%: A in the corner of low rates, (A) in that of high ones.
+    let rows: Vec<&str> = text.lines().skip_while(|line| !line.starts_with("Best option by")).collect();
+    let words = |line: &str| line.split_whitespace().map(str::to_owned).collect::<Vec<_>>();
+    assert_eq!(words(rows[1]).last().map(String::as_str), Some("(A)"), "{text}");
+    assert_eq!(words(rows[11])[1], "A", "{text}");
+    let sheet = (0..60).map(|row| cell(std::path::Path::new(&out), "Map", &format!("B{}", row + 1)).value);
+    let held: Vec<_> = sheet.collect();
+    let is = |text: &str| held.contains(&hence_workbook::reading::Value::Text(text.into()));
+    assert!(is("A") && is("(A)"), "{held:?}");
+    // Without such a basis there is nothing to map.
+    let refused = run(&["compare", book.arg(), "--map", "preference,growth"]);
+    assert_eq!(code(&refused), 1);
+    assert!(stderr(&refused).contains("(map-basis)"), "{}", stderr(&refused));
+    assert_eq!(code(&run(&["compare", book.arg(), "--picture", "x.svg"])), 2);
+    let wrong = run(&["compare", book.arg(), "--map", "preference,growth", "--picture", "x.png"]);
+    assert_eq!(code(&wrong), 2);
+    assert!(stderr(&wrong).contains("x.svg"), "{}", stderr(&wrong));
+}

@@ -2,13 +2,13 @@
 
 use std::path::PathBuf;
 
-use hence_core::Basis;
-use hence_workbook::compare::{CompareRequest, Comparison, book, compare};
+use hence_core::{Basis, Parameter};
+use hence_workbook::compare::{CompareRequest, Comparison, book, compare, picture as draw};
 use hence_workbook::package::{may_write, same_file, write_atomically};
 use hence_workbook::problem::{Place, Problem, Result as BookResult};
 use hence_workbook::report::Status;
 
-use crate::args::Compare;
+use crate::args::{Compare, MapOver};
 use crate::outputs::{Output, stream};
 use crate::progress::Progress;
 use crate::terminal::{self, Terminal};
@@ -20,17 +20,27 @@ pub fn run(args: &Compare, schedules: &Option<PathBuf>, terminal: &Terminal) -> 
     for line in &args.against {
         Basis::parse(line, &catalogue).map_err(|error| super::typed(&error, line))?;
     }
-    let request = CompareRequest { against: args.against.clone(), roles: super::fill::roles(&args.roles)? };
+    let map = args.map.map(|map| match map {
+        MapOver::Elasticity => Parameter::Elasticity,
+        MapOver::Growth => Parameter::Growth,
+    });
+    let roles = super::fill::roles(&args.roles)?;
+    let request = CompareRequest { against: args.against.clone(), roles, map };
     let output = output(args)?;
+    let picture = picture_output(args)?;
     let shown = input::shown(&args.book);
     let progress = Progress::start();
     progress.doing(&format!("comparing {shown}"));
-    let compared = may(args, output.as_ref()).and_then(|()| {
+    let outputs = output.iter().chain(&picture);
+    let compared = outputs.clone().try_for_each(|output| may(args, output)).and_then(|()| {
         let package = input::open(&args.book)?;
         let found = compare(&package, &request, &catalogue)?;
         let bytes = output.as_ref().map(|_| book(&package, &found)).transpose()?;
         if let (Some(Output::File(path)), Some(bytes)) = (&output, &bytes) {
             write_atomically(path, bytes, args.force)?;
+        }
+        if let (Some(Output::File(path)), Some(map)) = (&picture, &found.map) {
+            write_atomically(path, draw(&found, map).as_bytes(), args.force)?;
         }
         Ok((found, bytes))
     });
@@ -96,9 +106,21 @@ fn output(args: &Compare) -> Result<Option<Output>, Failure> {
     Ok(Some(output))
 }
 
+/// Where the picture goes: a file.
+fn picture_output(args: &Compare) -> Result<Option<Output>, Failure> {
+    let Some(path) = &args.picture else { return Ok(None) };
+    if path.extension().is_some_and(|e| e.eq_ignore_ascii_case("svg")) {
+        return Ok(Some(Output::File(path.clone())));
+    }
+    let instead = path.with_extension("svg");
+    let message =
+        format!("--picture {}: the picture is an .svg file\nTry: {}", path.display(), instead.display());
+    Err(Failure::Message(message))
+}
+
 /// The input is never written, and an existing file needs `--force`.
-fn may(args: &Compare, output: Option<&Output>) -> BookResult<()> {
-    let Some(Output::File(path)) = output else { return Ok(()) };
+fn may(args: &Compare, output: &Output) -> BookResult<()> {
+    let Output::File(path) = output else { return Ok(()) };
     if !input::is_dash(&args.book) && same_file(&args.book, path) {
         let message = format!("the output {} is the input, which is never written", path.display());
         return Err(Problem::error("output-is-input", Place::default(), message)

@@ -2,6 +2,7 @@
 
 use hence_core::{CAUTION, Parameter};
 
+use super::map::{Map, option_letter};
 use super::search::{Change, Entry, Moved};
 use super::{Comparison, Side};
 use crate::package::Package;
@@ -16,7 +17,92 @@ const LAST: u32 = 6;
 /// # Errors
 /// A number is too large, or no temporary file can be made.
 pub fn book(package: &Package, comparison: &Comparison) -> Result<Vec<u8>> {
-    writer::workbook(&[sides(package, comparison), switching(comparison)])
+    let mut sheets = vec![sides(package, comparison), switching(comparison)];
+    sheets.extend(comparison.map.as_ref().map(|map| letters(comparison, map)));
+    writer::workbook(&sheets)
+}
+
+/// Every so many points of a map, across and up, stand on its sheet.
+const EVERY: (usize, usize) = (4, 3);
+
+/// A map in letters.
+fn letters(comparison: &Comparison, map: &Map) -> Sheet {
+    let mut sheet = Sheet::new("Map");
+    let columns: Vec<usize> = (0..map.xs.len()).step_by(EVERY.0).collect();
+    sheet.columns(0, 0, 24.0);
+    sheet.columns(1, columns.len() as u32, 7.0);
+    sheet.text(0, 0, Style::Title, format!("Best option by preference and {}", map.up));
+    sheet.paragraph(1, 0, columns.len() as u32, Style::Wrapped, map_words(map));
+    let mut row = 3;
+    for (i, option) in comparison.options.iter().enumerate() {
+        sheet.text(row, 0, Style::Text, format!("{}: {option}", option_letter(i)));
+        row += 1;
+    }
+    row += 1;
+    let here = map.here_point();
+    for j in (0..map.ys.len()).step_by(EVERY.1).rev() {
+        let style = if map.up == Parameter::Elasticity { Style::Ratio } else { Style::Rate };
+        sheet.number(row, 0, style, map.ys[j]);
+        for (col, &i) in columns.iter().enumerate() {
+            // The nearest of those shown.
+            let near = |k: usize, at: usize, every: usize| k.abs_diff(at) * 2 <= every;
+            let mark = if near(i, here.0, EVERY.0) && near(j, here.1, EVERY.1) { "*" } else { "" };
+            sheet.text(row, col as u32 + 1, Style::Result, map.letter(i, j) + mark);
+        }
+        row += 1;
+    }
+    sheet.text(row, 0, Style::Heading, format!("{} up, preference across", map.up));
+    for (col, &i) in columns.iter().enumerate() {
+        sheet.number(row, col as u32 + 1, Style::Rate, map.xs[i]);
+    }
+    zero_lines(&mut sheet, comparison, map, row + 2);
+    sheet
+}
+
+/// The zero lines of a map: the preference at which each option is worth nothing, by rows.
+fn zero_lines(sheet: &mut Sheet, comparison: &Comparison, map: &Map, mut row: u32) {
+    let worth =
+        comparison.baseline.map_or("nothing".to_owned(), |i| format!("as much as {}", comparison.options[i]));
+    sheet.text(
+        row,
+        0,
+        Style::Section,
+        format!("Zero lines: the preference at which an option is worth {worth}"),
+    );
+    row += 1;
+    sheet.text(row, 0, Style::Heading, map.up.to_string());
+    let shown_options: Vec<usize> =
+        (0..comparison.options.len()).filter(|option| comparison.baseline != Some(*option)).collect();
+    // Each option's column is as wide as three of the map's.
+    for (k, &option) in shown_options.iter().enumerate() {
+        let col = 3 * k as u32 + 1;
+        sheet.paragraph(row, col, col + 2, Style::Heading, &comparison.options[option]);
+    }
+    for zero in map.zero.iter().rev() {
+        row += 1;
+        let style = if map.up == Parameter::Elasticity { Style::Ratio } else { Style::Rate };
+        sheet.number(row, 0, style, map.ys[zero.up]);
+        for (k, &option) in shown_options.iter().enumerate() {
+            let moved = Moved::Parameter(Parameter::Preference);
+            let mut texts: Vec<String> = zero.values[option].iter().map(|x| shown(&moved, *x)).collect();
+            if zero.open[option] {
+                texts.push("not settled".to_owned());
+            }
+            let text = if texts.is_empty() { "-".to_owned() } else { texts.join(", ") };
+            let col = 3 * k as u32 + 1;
+            sheet.paragraph(row, col, col + 2, Style::Instead, text);
+        }
+    }
+}
+
+/// What a map in letters shows.
+pub fn map_words(map: &Map) -> String {
+    format!(
+        "The letter of the option with the highest net present value where preference and {} of {} are those of the column \
+         and the row, all else as it is. In brackets: even the best is worth less than nothing. An equals sign: several are \
+         best. A dot: no curve has those parts, or a value has no end. A star: nearest to the basis as stated.",
+        map.up, map.basis
+    )
 }
 
 fn sides(package: &Package, comparison: &Comparison) -> Sheet {
