@@ -17,6 +17,7 @@ pub(super) fn section(facts: &Facts<'_>) -> Section {
             money(own.npv)
         )));
     }
+    blocks.extend(exact(facts).map(Block::List));
     blocks.push(Block::Table(eras(facts)));
     Section { title: "The options".to_owned(), blocks, beside: None }
 }
@@ -63,6 +64,15 @@ fn service(facts: &Facts<'_>) -> String {
     let (least, most) = (years.iter().min().unwrap_or(&0), years.iter().max().unwrap_or(&0));
     let years = if least == most { most.to_string() } else { format!("{least} to {most}") };
     format!("annual equivalent over {years} years")
+}
+
+/// What flows that are not small against consumption are worth, where a path of consumption is given.
+fn exact(facts: &Facts<'_>) -> Option<Vec<String>> {
+    let told = facts.options.iter().enumerate().filter_map(|(i, option)| {
+        let (_, words) = option.exact.as_ref()?;
+        Some(format!("{} against consumption: {words}.", facts.name(i)))
+    });
+    Some(told.collect::<Vec<_>>()).filter(|texts| !texts.is_empty())
 }
 
 /// What share of the gross present value falls into each era.
