@@ -130,7 +130,9 @@ fn points(parameter: Parameter, here: f64, count: usize) -> Vec<f64> {
     while high < 2.0 * here {
         high *= 2.0;
     }
-    (0..count).map(|k| low + (high - low) * k as f64 / (count - 1) as f64).collect()
+    // The last point is the end itself, not what rounding leaves of it.
+    let point = |k| if k + 1 == count { high } else { low + (high - low) * k as f64 / (count - 1) as f64 };
+    (0..count).map(point).collect()
 }
 
 /// The zero lines in one row, found as switching values are.
