@@ -119,6 +119,25 @@ pub unsafe extern "C" fn hence_basis_free(basis: *mut hence_basis) {
     }
 }
 
+/// A text of a basis, into the caller's buffer.
+///
+/// # Safety
+/// `basis` is NULL or a live handle; `buffer` is NULL or writable for `capacity` bytes; `error` as for [`guard`].
+unsafe fn told(
+    basis: *const hence_basis,
+    buffer: *mut c_char,
+    capacity: usize,
+    error: *mut hence_error,
+    words: impl Fn(&Basis) -> String,
+) -> i32 {
+    let body = || {
+        // SAFETY: the caller's contracts for `basis` and `buffer`.
+        unsafe { arguments::write_text(&words(&borrow(basis)?.basis), buffer, capacity, 2) }
+    };
+    // SAFETY: the caller's contract for `error`.
+    unsafe { guard(error, body) }
+}
+
 /// The basis in words, with its source.
 ///
 /// In cells: HENCE.EXPLAIN.
@@ -134,12 +153,8 @@ pub unsafe extern "C" fn hence_basis_describe(
     capacity: usize,
     error: *mut hence_error,
 ) -> i32 {
-    let body = || {
-        // SAFETY: the caller's contracts for `basis` and `buffer`.
-        unsafe { arguments::write_text(&borrow(basis)?.basis.words(), buffer, capacity, 2) }
-    };
-    // SAFETY: the caller's contract for `error`.
-    unsafe { guard(error, body) }
+    // SAFETY: the caller's contracts, passed on.
+    unsafe { told(basis, buffer, capacity, error, Basis::words) }
 }
 
 /// The canonical text of the basis, which parses back to the same basis: its rate line, or its schedule's id, with the
@@ -153,12 +168,8 @@ pub unsafe extern "C" fn hence_basis_line(
     capacity: usize,
     error: *mut hence_error,
 ) -> i32 {
-    let body = || {
-        // SAFETY: the caller's contracts for `basis` and `buffer`.
-        unsafe { arguments::write_text(&borrow(basis)?.basis.canonical(), buffer, capacity, 2) }
-    };
-    // SAFETY: the caller's contract for `error`.
-    unsafe { guard(error, body) }
+    // SAFETY: the caller's contracts, passed on.
+    unsafe { told(basis, buffer, capacity, error, Basis::canonical) }
 }
 
 /// The timing that the basis states, its own before its schedule's, as hence_offsets_from_years takes it: "flows middle,
@@ -172,14 +183,9 @@ pub unsafe extern "C" fn hence_basis_timing(
     capacity: usize,
     error: *mut hence_error,
 ) -> i32 {
-    let body = || {
-        // SAFETY: the caller's contract for `basis`.
-        let timing = unsafe { borrow(basis) }?.basis.timing().unwrap_or_default();
-        // SAFETY: the caller's contract for `buffer`.
-        unsafe { arguments::write_text(&timing.to_string(), buffer, capacity, 2) }
-    };
-    // SAFETY: the caller's contract for `error`.
-    unsafe { guard(error, body) }
+    let words = |basis: &Basis| basis.timing().unwrap_or_default().to_string();
+    // SAFETY: the caller's contracts, passed on.
+    unsafe { told(basis, buffer, capacity, error, words) }
 }
 
 /// The rate line of a built-in schedule, with the timing it states.
