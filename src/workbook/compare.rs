@@ -12,7 +12,7 @@ use crate::model::Workbook;
 use crate::outcome::{ChoiceOutcome, Totals};
 use crate::package::Package;
 use crate::preflight::preflight;
-use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
+use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::report::Status;
 use crate::resolve::{Options, resolve};
 use crate::valuation::{from_core, value};
@@ -107,8 +107,7 @@ pub struct Comparison {
 impl Comparison {
     /// Done, unless a problem is an error.
     pub fn status(&self) -> Status {
-        let wrong = self.problems.iter().any(|problem| problem.severity == Severity::Error);
-        if wrong { Status::Problems } else { Status::Done }
+        Status::of(&self.problems)
     }
 }
 

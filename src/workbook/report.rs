@@ -19,6 +19,14 @@ pub enum Status {
     Failed,
 }
 
+impl Status {
+    /// Done, unless a problem is an error.
+    pub(crate) fn of(problems: &[Problem]) -> Self {
+        let wrong = problems.iter().any(|problem| problem.severity == Severity::Error);
+        if wrong { Status::Problems } else { Status::Done }
+    }
+}
+
 /// The same option under the schedule that its body wants run beside the declared one.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Companion {
@@ -123,11 +131,7 @@ pub struct Report {
 impl Report {
     /// Done, unless a problem is an error.
     pub fn status(&self) -> Status {
-        if self.problems.iter().any(|p| p.severity == Severity::Error) {
-            Status::Problems
-        } else {
-            Status::Done
-        }
+        Status::of(&self.problems)
     }
 }
 

@@ -26,7 +26,7 @@ use crate::outcome::ChoiceOutcome;
 use crate::package::Package;
 use crate::plan::Stale;
 use crate::preflight::preflight;
-use crate::problem::{Problem, Result, Severity};
+use crate::problem::{Problem, Result};
 use crate::references::SheetRange;
 use crate::report::{OptionReport, Status, option_reports};
 use crate::resolve::{Options, resolve};
@@ -77,8 +77,7 @@ pub struct Brief {
 impl Brief {
     /// Done, unless a problem is an error.
     pub fn status(&self) -> Status {
-        let wrong = self.problems.iter().any(|problem| problem.severity == Severity::Error);
-        if wrong { Status::Problems } else { Status::Done }
+        Status::of(&self.problems)
     }
 }
 
