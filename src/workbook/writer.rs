@@ -223,7 +223,16 @@ impl Sheet {
     }
 
     /// Sets the width of columns `first` to `last`, in characters; before any paragraph in them.
+    /// A later width counts: ranges of columns that overlap would have a program take the sheet for damaged.
     pub fn columns(&mut self, first: u32, last: u32, width: f64) {
+        for (a, b, earlier) in std::mem::take(&mut self.widths) {
+            if a < first {
+                self.widths.push((a, b.min(first - 1), earlier));
+            }
+            if b > last {
+                self.widths.push((a.max(last + 1), b, earlier));
+            }
+        }
         self.widths.push((first, last, width));
     }
 

@@ -176,6 +176,20 @@ fn the_sample_comes_out_as_shown() {
         String::from_utf8_lossy(&bytes).contains(&formula)
     };
     assert!(parts.iter().any(holds), "no cell of the filled sample holds {formula}");
+    // Overlapping ranges of columns make a program take a sheet for damaged.
+    for part in &parts {
+        let text = String::from_utf8_lossy(&output.part(part).expect("it can be read").unwrap_or_default())
+            .into_owned();
+        let number = |column: &str, name: &str| -> u32 {
+            let rest = column.split(&format!("{name}=\"")).nth(1).and_then(|rest| rest.split('"').next());
+            rest.and_then(|number| number.parse().ok()).expect("a column")
+        };
+        let mut last = 0;
+        for column in text.split("<col ").skip(1) {
+            assert!(number(column, "min") > last, "{part}: columns overlap");
+            last = number(column, "max");
+        }
+    }
     let book = Workbook::read(&output).expect("the output is a workbook");
     let section = text.split("\n## What comes out\n").nth(1).and_then(|rest| rest.split("\n## ").next());
     let rows = section.expect("a section").lines().filter_map(|line| line.strip_prefix("| Audit "));
