@@ -16,6 +16,7 @@ pub mod dated;
 mod drawing;
 pub mod draws;
 pub mod fill;
+pub mod findings;
 mod follow;
 pub mod formulas;
 pub mod graft;
