@@ -19,6 +19,7 @@ mod numbers;
 mod own;
 mod package;
 mod patch;
+mod planted;
 mod prices;
 mod readme;
 mod references;
