@@ -32,6 +32,7 @@ pub mod patch;
 mod plan;
 pub mod preflight;
 pub mod problem;
+pub mod ranking;
 pub mod reading;
 pub mod references;
 pub mod report;
