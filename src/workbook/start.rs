@@ -123,12 +123,7 @@ fn settings(sheet: &mut Form, names: &mut Names) {
         (row::BASE, "Base year", "base", "the year to which values are discounted"),
         (row::BASIS, "Discount rate", "basis", "a rate, a rate line or a schedule's id"),
         (row::TIMING, "Timing", "timing", "where in their year flows and the base stand"),
-        (
-            row::PRICES,
-            "Prices",
-            "price_basis",
-            "real: without inflation, in the prices of one year; or nominal",
-        ),
+        (row::PRICES, "Prices", "price_basis", "real (in the prices of one year) or nominal"),
     ];
     for (row, label, role, remark) in settings {
         sheet.text(row, 0, Look::Text, label);
