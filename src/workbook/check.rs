@@ -2,13 +2,14 @@
 
 use hence_core::Catalogue;
 
-use crate::appraisal::{Held, Target};
+use crate::appraisal::{Appraisal, Held, Target};
 use crate::formulas::expected;
 use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::patch::Cached;
 use crate::plan::{same_text, span, words};
+use crate::planfile::PlanFile;
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, Severity};
 use crate::references::SheetRange;
@@ -58,26 +59,50 @@ impl CheckReport {
     }
 }
 
+/// What the run is told besides the workbook.
+#[derive(Clone, Debug, Default)]
+pub struct CheckRequest {
+    /// Roles for cells without a defined name: role, range.
+    pub roles: Vec<(String, String)>,
+    /// What is where, for a workbook without names; every appraisal of it is checked.
+    pub plan: Option<PlanFile>,
+}
+
 /// Checks one workbook; nothing is written.
 ///
 /// # Errors
 /// Everything that keeps the workbook from being read and valued, each with its cell.
-pub fn check(package: &Package, roles: &[(String, String)], catalogue: &Catalogue) -> Result<CheckReport> {
-    let mut problems = preflight(package)?;
+pub fn check(package: &Package, request: &CheckRequest, catalogue: &Catalogue) -> Result<CheckReport> {
+    let problems = preflight(package)?;
     let book = Workbook::read(package)?;
-    let mut appraisal = resolve(package, &book, &Options { roles, basis: None })?;
-    problems.append(&mut appraisal.problems);
-    let (outcomes, found) = value(&appraisal, catalogue)?;
-    problems.extend(found);
-    let layout = Layout::new(&appraisal, &outcomes, &SheetNames::choose(&[]));
     let mut report = CheckReport { agree: 0, differences: Vec::new(), not_filled: Vec::new(), problems };
+    let parts = match &request.plan {
+        Some(plan) => plan.parts(&book)?.into_iter().map(Some).collect(),
+        None => vec![None],
+    };
+    for part in parts {
+        let options = Options { roles: &request.roles, basis: None, plan: part.as_ref() };
+        check_appraisal(&resolve(package, &book, &options)?, catalogue, &mut report)?;
+    }
+    Ok(report)
+}
+
+/// Checks the targets of one appraisal.
+fn check_appraisal(appraisal: &Appraisal, catalogue: &Catalogue, report: &mut CheckReport) -> Result<()> {
+    let (outcomes, found) = value(appraisal, catalogue)?;
+    for problem in appraisal.problems.iter().chain(&found) {
+        if !report.problems.contains(problem) {
+            report.problems.push(problem.clone());
+        }
+    }
+    let layout = Layout::new(appraisal, &outcomes, &SheetNames::choose(&[]));
     for (c, choice) in appraisal.choices.iter().enumerate() {
         for target in &choice.targets {
-            let results = expected(&appraisal, &outcomes, &layout, c, target);
+            let results = expected(appraisal, &outcomes, &layout, c, target);
             report.target(target, &results);
         }
     }
-    Ok(report)
+    Ok(())
 }
 
 fn number(result: &Cached) -> Option<f64> {

@@ -30,6 +30,7 @@ mod own;
 pub mod package;
 pub mod patch;
 mod plan;
+pub mod planfile;
 pub mod preflight;
 pub mod problem;
 pub mod ranking;

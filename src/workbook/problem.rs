@@ -25,17 +25,24 @@ pub struct Place {
     pub range: Option<Range>,
     /// The defined name or heading it goes by.
     pub name: Option<String>,
+    /// The line, of a problem that is in a text of its own: a plan file.
+    pub line: Option<u32>,
 }
 
 impl Place {
     /// Cells of a sheet.
     pub fn cells(sheet: &str, range: Range) -> Self {
-        Place { sheet: Some(sheet.to_owned()), range: Some(range), name: None }
+        Place { sheet: Some(sheet.to_owned()), range: Some(range), ..Place::default() }
     }
 
     /// A defined name, where it has no cells to point at.
     pub fn name(name: &str) -> Self {
-        Place { sheet: None, range: None, name: Some(name.to_owned()) }
+        Place { name: Some(name.to_owned()), ..Place::default() }
+    }
+
+    /// A line of a text.
+    pub fn line(line: u32) -> Self {
+        Place { line: Some(line), ..Place::default() }
     }
 
     /// Adds the defined name or heading in brackets.
@@ -48,6 +55,9 @@ impl Place {
 
 impl fmt::Display for Place {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        if let Some(line) = self.line {
+            return write!(f, "line {line}");
+        }
         match (&self.sheet, self.range, &self.name) {
             (Some(sheet), Some(range), name) => {
                 write!(f, "{}!{range}", quote_sheet(sheet))?;

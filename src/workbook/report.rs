@@ -111,11 +111,24 @@ impl OptionReport {
     }
 }
 
+/// One of several appraisals in a workbook.
+#[derive(Clone, Debug, PartialEq)]
+pub struct AppraisalReport {
+    /// Its name.
+    pub name: String,
+    /// Its options.
+    pub options: Vec<OptionReport>,
+    /// The verdict as written to its audit summary.
+    pub verdict: String,
+}
+
 /// The report on one workbook.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Report {
-    /// Its options.
+    /// Its options; of several appraisals, all of them in order.
     pub options: Vec<OptionReport>,
+    /// The appraisals, where the workbook has several.
+    pub appraisals: Vec<AppraisalReport>,
     /// Everything found.
     pub problems: Vec<Problem>,
     /// Cells written, and cells found filled and compared.
@@ -124,7 +137,7 @@ pub struct Report {
     pub ticked: usize,
     /// Rows of numbers along the years that no role names: heading and cells.
     pub not_valued: Vec<String>,
-    /// The verdict as written to the audit summary.
+    /// The verdict as written to the audit summary; of several appraisals, that of all.
     pub verdict: String,
 }
 

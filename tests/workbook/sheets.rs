@@ -138,6 +138,8 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
         input_name: "mine.xlsx".into(),
         input_sha256: "0".repeat(64),
         basis_sha256: "1".repeat(64),
+        plan: None,
+        appraisal: None,
         version: "0.1.0".into(),
         as_of: Some("1 April 2026".into()),
         by: None,
@@ -164,6 +166,7 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
         problems: &appraisal.problems,
         carried,
         differs: &differs,
+        siblings: &[],
     };
     let composed = compose(&input, &layout);
     Audit { appraisal, outcomes, layout, composed }

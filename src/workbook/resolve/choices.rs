@@ -121,7 +121,7 @@ fn report_missing(context: &mut Context, split: &Split, told: Option<&str>) {
     }
     for group in &split.groups {
         let place = || {
-            let first = group.named.first();
+            let first = group.named.iter().find(|named| named.stated.is_none());
             first.map_or_else(
                 || Place::name(&group.name),
                 |named| Place { sheet: Some(named.at.sheet.clone()), ..Place::name(&group.name) },
@@ -209,7 +209,7 @@ fn budget(context: &mut Context, split: &Split, group: &Group, choice: &Choice) 
             None => context.report(
                 Problem::error(
                     "unknown-stream",
-                    counted::place(&named.at, cell, &named.from),
+                    named.cell(cell),
                     format!("`{text}` is no cost of the option `{}`", choice.name),
                 )
                 .hint(format!("its costs are {}", names_of_kind(choice, |kind| kind == StreamKind::Cost))),

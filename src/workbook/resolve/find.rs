@@ -1,9 +1,10 @@
 //! From names and `--role` to ranges: what each role refers to, and why some names cannot be used.
 
 use crate::model::DefinedName;
+use crate::planfile::{Part, Planned, Says};
 use crate::problem::{Place, Problem};
-use crate::reading::MAX_CELLS;
-use crate::references::{MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange};
+use crate::reading::{MAX_CELLS, Value};
+use crate::references::{Cell, MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange};
 use crate::roles::{self, Role, RoleName, Way};
 
 use super::{Checked, Context};
@@ -19,12 +20,36 @@ pub(super) struct Named {
     pub at: SheetRange,
     /// The sheet that the name is scoped to.
     pub scope: Option<String>,
+    /// What it says, where a plan states it without a cell; `at` is then no place.
+    pub stated: Option<Value>,
 }
 
 impl Named {
     /// Its cells, with the name in brackets.
     pub(super) fn place(&self) -> Place {
-        Place::cells(&self.at.sheet, self.at.range).called(&self.from)
+        match self.cells() {
+            Some(at) => Place::cells(&at.sheet, at.range).called(&self.from),
+            None => Place::name(&self.from),
+        }
+    }
+
+    /// Its cells; none where it is stated without one.
+    pub(super) fn cells(&self) -> Option<SheetRange> {
+        self.stated.is_none().then(|| self.at.clone())
+    }
+
+    /// One cell of its range, with the name in brackets.
+    pub(super) fn cell(&self, cell: Cell) -> Place {
+        match self.cells() {
+            Some(at) => Place::cells(&at.sheet, Range::cell(cell)).called(&self.from),
+            None => self.place(),
+        }
+    }
+
+    /// Stated by a plan in no cell.
+    fn without_cell(name: RoleName, from: String, value: Value) -> Self {
+        let at = SheetRange::new("", Range::cell(Cell::new(0, 0)));
+        Named { name, from, at, scope: None, stated: Some(value) }
     }
 
     /// More cells than are read as one range.
@@ -33,8 +58,9 @@ impl Named {
     }
 }
 
-/// Every role of the workbook, those of the command line first.
-pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Named> {
+/// Every role of the workbook: those of the command line, those of the plan that it does not give, and the names that
+/// neither gives.
+pub(super) fn find(context: &mut Context, given: &[(String, String)], plan: Option<&Part>) -> Vec<Named> {
     let mut found = Vec::new();
     for (role, range) in given {
         match from_command_line(context, role, range) {
@@ -42,6 +68,18 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
             Err(problem) => context.report(*problem),
         }
     }
+    let typed = found.len();
+    for planned in plan.iter().flat_map(|plan| &plan.entries) {
+        if beaten(&found[..typed], &planned.name).is_some() {
+            continue;
+        }
+        match from_plan(context, planned) {
+            Ok(named) => found.push(named),
+            Err(problem) => context.report(*problem),
+        }
+    }
+    let several = plan.is_some_and(|plan| plan.appraisal.is_some());
+    let told = found.len();
     let book = context.book;
     for defined in &book.names {
         let Some(parsed) = roles::parse_name(&defined.name) else { continue };
@@ -53,14 +91,21 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
                 continue;
             }
         };
-        if name.role.info().way == Way::Own || beaten(&found, &name, given.len()) {
+        if name.role.info().way == Way::Own || (several && !belongs_to_all(&name, defined)) {
             continue;
         }
-        match cells(context, defined) {
-            Ok(at) => {
-                found.push(Named { name, from: defined.name.clone(), at, scope: scope(context, defined) })
+        let stronger = beaten(&found[..told], &name).map(|at| (at < typed, found[at].clone()));
+        if matches!(stronger, Some((true, _))) {
+            continue;
+        }
+        match (cells(context, defined), stronger) {
+            (Ok(at), None) => {
+                let scope = scope(context, defined);
+                found.push(Named { name, from: defined.name.clone(), at, scope, stated: None });
             }
-            Err(problem) => context.report(*problem),
+            (Ok(at), Some((_, planned))) => disagreement(context, &planned, &defined.name, &at),
+            (Err(problem), None) => context.report(*problem),
+            (Err(_), Some(_)) => {}
         }
     }
     let mut kept = Vec::new();
@@ -88,15 +133,70 @@ pub(super) fn scope(context: &Context, defined: &DefinedName) -> Option<String> 
     defined.scope.and_then(|index| context.book.sheets.get(index)).map(|sheet| sheet.name.clone())
 }
 
-/// Whether one of the first `count` (from the command line) has the same role, stream and option.
-fn beaten(found: &[Named], name: &RoleName, count: usize) -> bool {
+/// Which of the stronger ones has the same role, stream and option.
+fn beaten(stronger: &[Named], name: &RoleName) -> Option<usize> {
     let same =
         |a: &Option<String>, b: &Option<String>| a.as_deref().map(roles::key) == b.as_deref().map(roles::key);
-    found.iter().take(count).filter(|named| named.from.starts_with("--role")).any(|named| {
+    stronger.iter().position(|named| {
         named.name.role == name.role
             && same(&named.name.stream, &name.stream)
             && (named.name.option.is_none() || same(&named.name.option, &name.option))
     })
+}
+
+/// Whether a name of the workbook can hold for each of several appraisals: it states something, or years, for all.
+fn belongs_to_all(name: &RoleName, defined: &DefinedName) -> bool {
+    let along = matches!(name.role, Role::Years | Role::Offsets | Role::Prices | Role::Consumption);
+    name.option.is_none() && defined.scope.is_none() && (along || name.role.is_setting())
+}
+
+/// Where plan and workbook state another base, basis, timing or price basis, the plan counts, and a warning says so.
+fn disagreement(context: &mut Context, planned: &Named, name: &str, at: &SheetRange) {
+    let weighty = [Role::Base, Role::Basis, Role::Timing, Role::PriceBasis];
+    if !weighty.contains(&planned.name.role) || planned.cells().as_ref() == Some(at) {
+        return;
+    }
+    let named = Named { from: name.to_owned(), at: at.clone(), stated: None, ..planned.clone() };
+    let (held, said) = (held(context, &named), held(context, planned));
+    if held.is_empty() || held.eq_ignore_ascii_case(&said) {
+        return;
+    }
+    let message = format!(
+        "the workbook says `{}`, and {} says `{}`: the plan counts",
+        super::cells::shown(&held),
+        planned.from,
+        super::cells::shown(&said)
+    );
+    context.report(
+        Problem::warning("plan-overrides", named.place(), message)
+            .hint("take the role out of the plan to use what the workbook says"),
+    );
+}
+
+/// What the first cell of a role holds, or a plan states, as text.
+pub(super) fn held(context: &mut Context, named: &Named) -> String {
+    let value = match &named.stated {
+        Some(value) => Some(value.clone()),
+        None => {
+            context.grid(&named.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()))
+        }
+    };
+    match value {
+        Some(Value::Text(text)) => text.trim().to_owned(),
+        Some(Value::Number(number) | Value::Date(number)) => number.to_string(),
+        _ => String::new(),
+    }
+}
+
+fn from_plan(context: &Context, planned: &Planned) -> Checked<Named> {
+    let (name, from) = (planned.name.clone(), planned.from.clone());
+    match &planned.says {
+        Says::Value(value) => Ok(Named::without_cell(name, from, value.clone())),
+        Says::Cells(text) => {
+            let at = located(context, Place::name(&from), text)?;
+            Ok(Named { name, from, at, scope: None, stated: None })
+        }
+    }
 }
 
 fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Named> {
@@ -109,7 +209,7 @@ fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Name
     if name.role.info().way == Way::Own {
         return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given").into());
     }
-    Ok(Named { name, from, at: located(context, place, range)?, scope: None })
+    Ok(Named { name, from, at: located(context, place, range)?, scope: None, stated: None })
 }
 
 /// The cells that a text such as `Sheet1!C7:F7`, or a defined name, stands for; `place` is where the text comes from.

@@ -23,6 +23,7 @@ use std::rc::Rc;
 use crate::appraisal::{Appraisal, Setting};
 use crate::model::{SheetFacts, Workbook};
 use crate::package::Package;
+use crate::planfile::Part;
 use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
 use crate::reading::{Grid, Sheets};
 use crate::references::{Cell, Range, SheetRange};
@@ -39,6 +40,8 @@ pub struct Options<'a> {
     pub roles: &'a [(String, String)],
     /// `--basis`: beats the workbook's.
     pub basis: Option<&'a str>,
+    /// What a plan says: it beats names, and the command line beats it.
+    pub plan: Option<&'a Part>,
 }
 
 /// Reads what a workbook says of its appraisal.
@@ -54,9 +57,13 @@ pub struct Options<'a> {
 /// being filled.
 pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<Appraisal> {
     let mut context = Context::open(package, book)?;
-    let named = find::find(&mut context, options.roles);
+    if let Some(plan) = options.plan {
+        context.problems.extend(plan.problems.iter().cloned());
+        context.appraisal = plan.appraisal.clone();
+    }
+    let named = find::find(&mut context, options.roles, options.plan);
     let ranges: Vec<SheetRange> =
-        named.iter().filter(|named| !named.too_large()).map(|named| named.at.clone()).collect();
+        named.iter().filter(|named| !named.too_large()).filter_map(find::Named::cells).collect();
     if let Err(error) = context.sheets.load(&ranges) {
         context.problems.extend(error.problems().iter().cloned());
         return Err(context.ended());
@@ -84,6 +91,8 @@ struct Context<'a> {
     facts: BTreeMap<String, Rc<SheetFacts>>,
     settings: BTreeMap<(String, Cell), Setting>,
     problems: Vec<Problem>,
+    /// Which of several appraisals of the workbook this is.
+    appraisal: Option<String>,
 }
 
 impl<'a> Context<'a> {
@@ -95,7 +104,8 @@ impl<'a> Context<'a> {
             crate::roles::parse_name(name).is_some()
         };
         let problems = book.problems.iter().filter(ours).cloned().collect();
-        Ok(Context { package, book, sheets, facts: BTreeMap::new(), settings: BTreeMap::new(), problems })
+        let (facts, settings) = (BTreeMap::new(), BTreeMap::new());
+        Ok(Context { package, book, sheets, facts, settings, problems, appraisal: None })
     }
 
     /// What a sheet holds besides values; nothing where it cannot be read, which is reported.

@@ -51,7 +51,7 @@ fn price_basis(context: &mut Context, named: &Named) -> Option<Given<Declared>> 
             .hint("write `real 2022` (the year of the prices), `real` or `nominal`"),
         );
     }
-    parsed.map(|value| Given { value, at: Some(named.at.clone()), from: named.from.clone() })
+    parsed.map(|value| Given { value, at: named.cells(), from: named.from.clone() })
 }
 
 fn parse_price_basis(text: &str) -> Option<Declared> {
@@ -85,8 +85,8 @@ fn price_year(word: &str) -> Option<i32> {
 
 /// An index along the years, or an inflation rate in one cell.
 fn levels(context: &mut Context, named: &Named, axis: &Axis) -> Option<Given<Levels>> {
-    let given = |value| Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() });
-    if named.at.range.is_single() {
+    let given = |value| Some(Given { value, at: named.cells(), from: named.from.clone() });
+    if named.stated.is_some() || named.at.range.is_single() {
         return given(Levels::Inflation(rate(context, named, "inflation")?));
     }
     if let Some(problem) = streams::wrong_shape(named, axis) {
@@ -120,7 +120,7 @@ fn levels(context: &mut Context, named: &Named, axis: &Axis) -> Option<Given<Lev
 /// Growth of a stream's price against others.
 pub(super) fn growth(context: &mut Context, named: &Named) -> Option<Given<f64>> {
     let value = rate(context, named, "growth")?;
-    Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() })
+    Some(Given { value, at: named.cells(), from: named.from.clone() })
 }
 
 /// A rate a year in one cell.

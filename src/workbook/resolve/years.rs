@@ -221,7 +221,7 @@ pub(super) fn base(context: &mut Context, named: Option<&Named>, axis: &Axis) ->
             return None;
         }
     };
-    let given = |value| Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() });
+    let given = |value| Some(Given { value, at: named.cells(), from: named.from.clone() });
     let first = axis.labels.first()?;
     match (&stated, first) {
         (Label::Year(year), Label::Year(_) | Label::Number(_) | Label::Offset(_)) => given(Base::Year(*year)),
