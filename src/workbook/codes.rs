@@ -153,7 +153,7 @@ pub const CODES: &[Code] = codes! {
         "name-missing-sheet": "A name refers to a sheet that does not exist.",
         "name-relative": "A name refers to other cells from each cell that uses it.",
         "name-sheets": "A name refers to several sheets at once.",
-        "name-table": "A name refers to part of a table, which is not read in this version.",
+        "name-table": "A name refers to a part of a table that cannot be read: no such table, column or row, or another row for every cell.",
         "name-union": "A name refers to several separate ranges.",
         "nothing-to-suggest": "No row of years with flows beside it was found.",
         "plan-appraisal": "A plan has several appraisals and one is to be chosen, or not the one that was asked for.",

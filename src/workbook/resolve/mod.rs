@@ -5,6 +5,7 @@ mod cells;
 mod choices;
 mod counted;
 mod coverage;
+mod dynamic;
 mod find;
 mod groups;
 mod prices;

@@ -7,7 +7,7 @@ use crate::appraisal::{Axis, Base, Direction, Given, Label};
 use crate::clock::label_kind;
 use crate::problem::{Place, Problem};
 use crate::reading::{ReadCell, Value};
-use crate::references::SheetRange;
+use crate::references::{Cell, SheetRange};
 use crate::roles::Role;
 
 use super::cells::{error_value, number, one, shown, single, text_as_number};
@@ -59,7 +59,11 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
                 }
                 labels.push(Some(label));
             }
-            Err(problem) => {
+            Err(mut problem) => {
+                if in_headings(context, &named.at.sheet, cell) {
+                    let hint = "headings of a table are always texts: name a row of years outside the table";
+                    problem.hint = Some(hint.to_owned());
+                }
                 context.report(*problem);
                 labels.push(None);
             }
@@ -69,6 +73,15 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
     let any = labels.iter().flatten().next()?.clone();
     let labels = labels.into_iter().map(|label| label.unwrap_or_else(|| any.clone())).collect();
     Some(Axis { at: named.at.clone(), direction, labels })
+}
+
+/// Whether a cell is one of a table's headings.
+fn in_headings(context: &mut Context, sheet: &str, cell: Cell) -> bool {
+    let facts = context.facts(sheet);
+    facts.is_some_and(|facts| {
+        let headings = |table: &crate::model::Table| cell.row < table.range.first.row + table.header_rows;
+        facts.tables.iter().any(|table| table.range.contains(cell) && headings(table))
+    })
 }
 
 /// One cell of the years.
