@@ -216,7 +216,11 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         &bytes,
         &Expected { changes: &changes, writes: &plan.writes, own_sheets: &grafted.sheets },
     )?;
-    let options = option_reports(&appraisal, &outcomes, &companions);
+    let mut options = option_reports(&appraisal, &outcomes, &companions);
+    let own = declared.iter().flat_map(|declared| &declared.choices);
+    for (option, choice) in options.iter_mut().zip(own) {
+        option.declared = Basis::parse(&choice.basis.value, catalogue).ok().map(|basis| basis.canonical());
+    }
     let not_valued = not_valued(&appraisal);
     let report = Report { options, problems, filled: plan.filled, ticked: plan.ticked, not_valued, verdict };
     Ok(Filled { bytes, report })
