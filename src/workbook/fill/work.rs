@@ -2,10 +2,10 @@
 
 use std::collections::{BTreeMap, BTreeSet};
 
-use hence_core::Catalogue;
+use hence_core::{Basis, Catalogue};
 use sha2::{Digest, Sha256};
 
-use crate::appraisal::Appraisal;
+use crate::appraisal::{Appraisal, Choice};
 use crate::companions::companions;
 use crate::compare::{Sensitivity, sensitivity};
 use crate::follow;
@@ -45,6 +45,8 @@ pub(super) struct Work {
     pub outcomes: Vec<ChoiceOutcome>,
     pub companions: Vec<Option<Companion>>,
     pub sensitivity: Sensitivity,
+    /// The canonical basis that the workbook itself declares for each option, where the command line gives another.
+    declared: Vec<Option<String>>,
     /// Its own sheets.
     pub names: SheetNames,
     pub layout: Layout,
@@ -88,6 +90,8 @@ impl Work {
         let companions = companions(&appraisal, &outcomes, catalogue, &mut problems);
         let sensitivity = sensitivity(&appraisal, &outcomes, &request.against, catalogue)?;
         problems.extend(sensitivity.comparison.problems.iter().cloned());
+        let own = |choice: &Choice| Some(Basis::parse(&choice.basis.value, catalogue).ok()?.canonical());
+        let declared = declared.iter().flat_map(|declared| &declared.choices).map(own).collect();
         let name = part.and_then(|part| part.appraisal.clone());
         let names = SheetNames::choose_for(name.as_deref(), taken);
         let layout = Layout::new(&appraisal, &outcomes, &names);
@@ -100,6 +104,7 @@ impl Work {
             outcomes,
             companions,
             sensitivity,
+            declared,
             names,
             layout,
             plan: Plan::default(),
@@ -161,7 +166,11 @@ impl Work {
 
     /// What it comes to, an entry an option.
     pub(super) fn options(&self) -> Vec<OptionReport> {
-        option_reports(&self.appraisal, &self.outcomes, &self.companions)
+        let mut options = option_reports(&self.appraisal, &self.outcomes, &self.companions);
+        for (option, declared) in options.iter_mut().zip(&self.declared) {
+            option.declared.clone_from(declared);
+        }
+        options
     }
 
     /// Its part of the report, where the workbook has several.
