@@ -4,7 +4,6 @@ use std::collections::{BTreeMap, BTreeSet};
 use std::path::Path;
 
 use hence_core::{Basis, Catalogue, Compounding, Spec};
-use sha2::{Digest, Sha256};
 
 use crate::appraisal::{Appraisal, Covered, Given, Setting, Stated};
 use crate::companions::companions;
@@ -15,7 +14,7 @@ use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
-use crate::package::{Changes, Package, may_write, same_file, write_atomically};
+use crate::package::{Changes, Package, may_write, same_file, sha256, write_atomically};
 use crate::patch::{CellWrite, patch_sheet};
 use crate::plan::{Plan, Stale, Ways, plan_targets};
 use crate::preflight::preflight;
@@ -428,17 +427,13 @@ fn meta(package: &Package, outcomes: &[ChoiceOutcome], request: &FillRequest) ->
     let bases: String = outcomes.iter().map(of).collect();
     Meta {
         input_name: package.file_name().to_owned(),
-        input_sha256: sha256(package.bytes()),
+        input_sha256: package.sha256(),
         basis_sha256: sha256(bases.as_bytes()),
         version: env!("CARGO_PKG_VERSION").to_owned(),
         as_of: request.as_of.clone(),
         by: request.by.clone(),
         formulas: request.formulas,
     }
-}
-
-fn sha256(bytes: &[u8]) -> String {
-    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
 /// A patch knows the cell but not the sheet: the sheet's name is added here.

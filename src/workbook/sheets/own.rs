@@ -76,6 +76,7 @@ pub(super) fn marks(sheet: &Sheet) -> [NewName; 2] {
         .filter_map(|(cell, content)| match content {
             Content::Text(text) => (!text.is_empty()).then(|| (cell, text_mark(text))),
             Content::Number(number) => Some((cell, number_mark(*number))),
+            Content::Logical(_) => None,
             Content::Formula(..) => Some((cell, FORMULA_MARK.to_owned())),
         })
         .collect();
