@@ -26,6 +26,7 @@ mod measuring;
 pub mod model;
 pub mod names_edit;
 pub mod naming;
+pub mod older;
 pub mod outcome;
 mod own;
 pub mod package;

@@ -47,8 +47,6 @@ mod parse;
 
 use std::path::Path;
 
-use sha2::{Digest, Sha256};
-
 use crate::model::Workbook;
 use crate::problem::{Place, Problem, Result};
 
@@ -107,8 +105,7 @@ impl PlanFile {
     /// ```
     pub fn parse(name: &str, text: &str) -> Result<Self> {
         let whole = parse::parse(text)?;
-        let digest = Sha256::digest(text.as_bytes());
-        let sha256 = digest.iter().map(|byte| format!("{byte:02x}")).collect();
+        let sha256 = crate::package::sha256(text.as_bytes());
         Ok(PlanFile { name: name.to_owned(), sha256, whole, only: None })
     }
 

@@ -17,6 +17,7 @@ mod memory;
 mod model;
 mod names_edit;
 mod numbers;
+mod older;
 mod own;
 mod package;
 mod patch;

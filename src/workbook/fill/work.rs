@@ -3,7 +3,6 @@
 use std::collections::{BTreeMap, BTreeSet};
 
 use hence_core::{Basis, Catalogue};
-use sha2::{Digest, Sha256};
 
 use crate::appraisal::{Appraisal, Choice};
 use crate::companions::companions;
@@ -13,7 +12,7 @@ use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
-use crate::package::Package;
+use crate::package::{Package, sha256};
 use crate::plan::{Plan, Stale, Ways, plan_targets};
 use crate::planfile::{Part, PlanFile};
 use crate::problem::{Place, Problem, Result};
@@ -249,7 +248,7 @@ fn meta(
     let plan = |text: fn(&PlanFile) -> &str| request.plan.as_ref().map(|plan| text(plan).to_owned());
     Meta {
         input_name: package.file_name().to_owned(),
-        input_sha256: sha256(package.bytes()),
+        input_sha256: package.sha256(),
         basis_sha256: sha256(bases.as_bytes()),
         plan: plan(PlanFile::name).zip(plan(PlanFile::sha256)),
         appraisal: appraisal.map(str::to_owned),
@@ -258,8 +257,4 @@ fn meta(
         by: request.by.clone(),
         formulas: request.formulas,
     }
-}
-
-fn sha256(bytes: &[u8]) -> String {
-    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
 }
