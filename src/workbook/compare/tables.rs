@@ -209,7 +209,8 @@ fn switching(comparison: &Comparison) -> Sheet {
                 None => sheet.text(row, 3, Style::Instead, "none"),
             }
             let (low, high) = entry.interval;
-            let text = format!("{} to {}", shown(&entry.moved, low), shown(&entry.moved, high));
+            // Apart from the number before it.
+            let text = format!("  {} to {}", shown(&entry.moved, low), shown(&entry.moved, high));
             sheet.text(row, 4, Style::Wrapped, text);
             sheet.text(row, 5, Style::Wrapped, remark(entry));
         }
