@@ -3,7 +3,8 @@
 use std::io::{IsTerminal, Write};
 use std::path::{Path, PathBuf};
 
-use hence_workbook::package::same_file;
+use hence_workbook::package::{may_write, same_file};
+use hence_workbook::problem::{Place, Problem, Result as BookResult};
 
 use crate::Failure;
 use crate::input::{DASH, is_dash};
@@ -31,6 +32,17 @@ impl Output {
             ));
         }
         Ok(Output::Stream)
+    }
+
+    /// Refused where it would be the input, which is never written, or an existing file without `--force`.
+    pub fn may_write(&self, input: &Path, force: bool) -> BookResult<()> {
+        let Output::File(path) = self else { return Ok(()) };
+        if !is_dash(input) && same_file(input, path) {
+            let message = format!("the output {} is the input, which is never written", path.display());
+            let problem = Problem::error("output-is-input", Place::default(), message);
+            return Err(problem.hint("give --out another name").into());
+        }
+        may_write(path, force)
     }
 
     /// As it is shown.

@@ -33,6 +33,7 @@ mod plan;
 pub mod planfile;
 pub mod preflight;
 pub mod problem;
+pub mod ranking;
 pub mod reading;
 pub mod references;
 pub mod report;

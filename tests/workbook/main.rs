@@ -3,6 +3,7 @@
 mod bare;
 mod brief;
 mod codes;
+mod compare;
 mod corpus;
 mod draws;
 mod files;

@@ -34,21 +34,21 @@ struct DifferenceOut {
 /// Exit 0 when all agree, 1 on any difference.
 pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    let roles = super::fill::roles(&args.roles)?;
-    let shown = input::shown(&args.book);
+    let roles = super::roles(&args.roles)?;
+    let shown = input::shown(&args.source.book);
     let progress = Progress::start();
     progress.doing(&format!("checking {shown}"));
-    let checked = input::open(&args.book).and_then(|package| check(&package, &roles, &catalogue));
+    let checked = input::open(&args.source.book).and_then(|package| check(&package, &roles, &catalogue));
     drop(progress);
     match checked {
         Ok(report) => {
             render::problems(terminal, &shown, &report.problems);
-            terminal::print(&if args.json { json(shown, &report) } else { text(&shown, &report) })?;
+            terminal::print(&if args.document.json { json(shown, &report) } else { text(&shown, &report) })?;
             Ok(if report.agrees() { Outcome::Done } else { Outcome::Wrong })
         }
         Err(error) => {
             render::problems(terminal, &shown, error.problems());
-            if args.json {
+            if args.document.json {
                 let book = CheckedBook {
                     input: shown,
                     status: hence_workbook::report::Status::Failed,

@@ -2,7 +2,7 @@
 
 use std::path::{Path, PathBuf};
 
-use hence_core::{Basis, Catalogue};
+use hence_core::Catalogue;
 use hence_workbook::fill::{FillRequest, fill, fill_file};
 use hence_workbook::package::write_atomically;
 use hence_workbook::problem::Result as BookResult;
@@ -18,22 +18,19 @@ use crate::{Failure, Outcome, input, render};
 /// Fills every workbook; one that fails does not keep the others from being filled.
 pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    for line in &args.against {
-        Basis::parse(line, &catalogue).map_err(|error| super::typed(&error, line))?;
-    }
     let request = FillRequest {
         basis: args.basis.clone(),
-        replace: args.replace.as_deref().map(|text| pair(text, "--replace", "OLD=NEW")).transpose()?,
-        roles: roles(&args.roles)?,
+        replace: args.replace.as_deref().map(|text| super::pair(text, "--replace", "OLD=NEW")).transpose()?,
+        roles: super::roles(&args.roles)?,
         formulas: args.write == WriteWhat::Formulas,
         replace_formulas: args.replace_formulas,
-        against: args.against.clone(),
-        as_of: args.as_of.clone(),
-        by: args.by.clone(),
+        against: super::against(&args.against, &catalogue)?,
+        as_of: args.signature.as_of.clone(),
+        by: args.signature.by.clone(),
     };
     let outputs = outputs_for(&args.books, args.out.as_deref())?;
     let streams = outputs.contains(&Output::Stream);
-    if streams && args.json {
+    if streams && args.document.json {
         return Err(Failure::Message(
             "--json and a workbook both want standard output\nTry: --out with a file".into(),
         ));
@@ -49,7 +46,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
             1 => format!("filling {shown}"),
             n => format!("filling {} of {n}: {shown}", i + 1),
         });
-        let filled = fill_one(book, output, &request, &catalogue, args.force);
+        let filled = fill_one(book, output, &request, &catalogue, args.overwrite.force);
         progress.pause();
         match filled {
             Ok((report, bytes)) => {
@@ -73,7 +70,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     }
     drop(progress);
     let text = texts.join("\n");
-    if args.json {
+    if args.document.json {
         terminal::print(&Document::text(books))?;
     } else if streams {
         terminal.tell(&text);
@@ -105,19 +102,4 @@ fn fill_one(
             Ok((filled.report, Some(filled.bytes)))
         }
     }
-}
-
-/// `A=B` in two.
-fn pair(text: &str, flag: &str, shape: &str) -> Result<(String, String), Failure> {
-    match text.split_once('=') {
-        Some((a, b)) if !a.trim().is_empty() && !b.trim().is_empty() => {
-            Ok((a.trim().into(), b.trim().into()))
-        }
-        _ => Err(Failure::Message(format!("{flag} {text}: expected {shape}"))),
-    }
-}
-
-/// The `--role` pairs.
-pub fn roles(texts: &[String]) -> Result<Vec<(String, String)>, Failure> {
-    texts.iter().map(|text| pair(text, "--role", "ROLE=RANGE, as in years=\"Sheet1!C4:Z4\"")).collect()
 }

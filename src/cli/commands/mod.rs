@@ -13,9 +13,10 @@ pub mod start;
 
 use std::path::PathBuf;
 
-use hence_core::Catalogue;
+use hence_core::{Basis, Catalogue};
 
 use crate::Failure;
+use crate::args::{Against, Roles};
 
 /// The schedules in force: the user's folder first, then the built-in ones.
 pub fn catalogue(folder: &Option<PathBuf>) -> Result<Catalogue, Failure> {
@@ -33,4 +34,28 @@ pub fn typed(error: &hence_core::Error, text: &str) -> Failure {
         message.push_str(&format!("\nTry: {hint}"));
     }
     Failure::Message(message)
+}
+
+/// The lines and ids that `--against` names, each looked at before any workbook is read.
+pub fn against(args: &Against, catalogue: &Catalogue) -> Result<Vec<String>, Failure> {
+    for line in &args.against {
+        Basis::parse(line, catalogue).map_err(|error| typed(&error, line))?;
+    }
+    Ok(args.against.clone())
+}
+
+/// The `--role` pairs.
+pub fn roles(args: &Roles) -> Result<Vec<(String, String)>, Failure> {
+    let shape = "ROLE=RANGE, as in years=\"Sheet1!C4:Z4\"";
+    args.roles.iter().map(|text| pair(text, "--role", shape)).collect()
+}
+
+/// `A=B` in two.
+pub fn pair(text: &str, flag: &str, shape: &str) -> Result<(String, String), Failure> {
+    match text.split_once('=') {
+        Some((a, b)) if !a.trim().is_empty() && !b.trim().is_empty() => {
+            Ok((a.trim().into(), b.trim().into()))
+        }
+        _ => Err(Failure::Message(format!("{flag} {text}: expected {shape}"))),
+    }
 }

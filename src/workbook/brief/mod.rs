@@ -28,6 +28,7 @@ use crate::plan::Stale;
 use crate::planfile::PlanFile;
 use crate::preflight::preflight;
 use crate::problem::{Problem, Result};
+use crate::ranking::Worth;
 use crate::references::SheetRange;
 use crate::report::{OptionReport, Status, option_reports};
 use crate::resolve::{Options, resolve};
@@ -179,13 +180,9 @@ impl Facts<'_> {
         self.baseline().map(|i| format!(" over {}", self.name(i))).unwrap_or_default()
     }
 
-    /// How far from zero a net present value may be by rounding alone.
-    fn dust(&self, option: usize) -> f64 {
-        let gross = |i: usize| {
-            let totals = &self.options[i].absolute;
-            totals.pv_benefits.abs() + totals.pv_costs.abs()
-        };
-        1e-9 * (gross(option) + self.baseline().map_or(0.0, gross))
+    /// What an option is worth on the declared basis, and how far rounding may have moved that.
+    fn worth(&self, option: usize) -> Worth {
+        self.found.comparison.sides[0].standings[option].worth
     }
 
     /// Whether all options stand on one basis, from one base, with one timing.

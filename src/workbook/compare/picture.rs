@@ -8,6 +8,7 @@ use super::Comparison;
 use super::map::{Map, option_letter};
 use super::search::Moved;
 use super::tables::shown;
+use crate::ranking::Worth;
 
 /// The plot within the picture, in points.
 const LEFT: f64 = 80.0;
@@ -121,7 +122,8 @@ impl Frame<'_> {
         let share = match (values, bests) {
             ((Some(a), Some(b)), (Some((Some(p), _)), Some((Some(q), _)))) => {
                 // The same option on both sides of zero, or two that swap.
-                let gap = |values: &[f64]| if p == q { values[p] } else { values[p] - values[q] };
+                let npv = |values: &[Worth], option: usize| values[option].npv;
+                let gap = |at: &[Worth]| if p == q { npv(at, p) } else { npv(at, p) - npv(at, q) };
                 let (left, right) = (gap(&a), gap(&b));
                 if left == right { 0.5 } else { left / (left - right) }
             }
@@ -132,9 +134,9 @@ impl Frame<'_> {
 
     /// Where an option's value is zero: straight within each cell of the grid, between points of different sign.
     fn zero_lines(&self, svg: &mut String) {
-        for (option, npv) in self.map.npv.iter().enumerate() {
+        for option in 0..self.map.worth.len() {
             let mut path = String::new();
-            for line in chained(&pieces(npv)) {
+            for line in chained(&pieces(&self.map.npv(option))) {
                 for (k, point) in line.iter().enumerate() {
                     let letter = if k == 0 { 'M' } else { 'L' };
                     let _ = write!(path, "{letter}{:.2} {:.2}", self.x(point.0), self.y(point.1));
@@ -273,7 +275,7 @@ fn legend(svg: &mut String, comparison: &Comparison, map: &Map) {
         );
         text(svg, LEFT + 13.0, y, "middle", "fill=\"#404040\"", &option_letter(option));
         text(svg, LEFT + 36.0, y, "start", "", name);
-        if !pieces(&map.npv[option]).is_empty() {
+        if !pieces(&map.npv(option)).is_empty() {
             let dash = DASHES[option % DASHES.len()];
             let (from, to) = (LEFT + 330.0, LEFT + 380.0);
             let line = y - 4.5;

@@ -10,10 +10,11 @@ use super::discounting::table_ref;
 use super::lines::UNCHECKED;
 use super::nets::Nets;
 use crate::compare::{Sensitivity, Side, Why};
-use crate::formulas::absolute;
+use crate::formulas::{absolute, literal};
 use crate::graft::ChartFinish;
 use crate::layout::{Column, Layout};
 use crate::patch::Cached;
+use crate::ranking::{Worth, level};
 use crate::references::{Cell, Range};
 use crate::writer::{Sheet, Style};
 
@@ -103,16 +104,16 @@ impl Page<'_> {
                 let result = Cached::Number(outcome.totals().npv);
                 self.sheet.formula(self.row, c as u32 + 1, Style::Money, text, result);
             }
-            self.ends(heading, "live", &npv(side));
+            self.ends(heading, "live", &worths(side));
         }
-        for (by, npv) in &self.told.shifted {
+        for (by, worths) in &self.told.shifted {
             let moved = if *by < 0.0 { "lower" } else { "higher" };
             let text = format!("Declared, every rate a point {moved} (of a Ramsey basis its preference)");
-            self.fixed(heading, &text, npv.as_deref());
+            self.fixed(heading, &text, worths.as_deref());
         }
         for side in sides.iter().filter(|side| side.why != Why::Declared) {
             let why = if side.why == Why::Companion { "Companion" } else { "Against" };
-            self.fixed(heading, &format!("{why}: {}", side.basis), Some(&npv(side)));
+            self.fixed(heading, &format!("{why}: {}", side.basis), Some(&worths(side)));
         }
         self.sheet.text(self.row, 0, Style::Strong, "Flat yearly rate in place of the basis:");
         self.row += 1;
@@ -123,17 +124,17 @@ impl Page<'_> {
     }
 
     /// A row of numbers as computed at the fill.
-    fn fixed(&mut self, heading: u32, label: &str, npv: Option<&[f64]>) {
+    fn fixed(&mut self, heading: u32, label: &str, worths: Option<&[Worth]>) {
         self.sheet.text(self.row, 0, Style::Wrapped, label);
-        let Some(npv) = npv.filter(|npv| npv.iter().all(|x| x.is_finite())) else {
+        let Some(worths) = worths.filter(|worths| worths.iter().all(|worth| worth.npv.is_finite())) else {
             self.sheet.text(self.row, 1, Style::Wrapped, NO_VALUE);
             self.row += 1;
             return;
         };
-        for (c, x) in npv.iter().enumerate() {
-            self.sheet.number(self.row, c as u32 + 1, Style::Money, *x);
+        for (c, worth) in worths.iter().enumerate() {
+            self.sheet.number(self.row, c as u32 + 1, Style::Money, worth.npv);
         }
-        self.ends(heading, UNCHECKED, npv);
+        self.ends(heading, UNCHECKED, worths);
     }
 
     /// A row at a flat rate: live where the net flows are.
@@ -146,9 +147,9 @@ impl Page<'_> {
         for c in 0..self.input.appraisal.choices.len() {
             let live = self.net_at(&home, c, base, &cell, rate);
             match live.filter(|(_, x, _)| x.is_finite()) {
-                Some((text, x, _)) => {
+                Some((text, x, gross)) => {
                     self.sheet.formula(self.row, c as u32 + 1, Style::Money, text, Cached::Number(x));
-                    values.push(x);
+                    values.push(Worth::of(x, gross));
                 }
                 None => {
                     self.sheet.text(self.row, c as u32 + 1, Style::Instead, self.why_not(c));
@@ -191,16 +192,20 @@ impl Page<'_> {
     }
 
     /// The best option of a row, live, and how its numbers stand.
-    fn ends(&mut self, heading: u32, checked: &str, npv: &[f64]) {
+    fn ends(&mut self, heading: u32, checked: &str, worths: &[Worth]) {
         let count = self.options();
         let cells =
             |row: u32| absolute(Range { first: Cell { row, col: 1 }, last: Cell { row, col: count } });
         let (row, names) = (cells(self.row), cells(heading));
-        let text =
-            format!("IF(COUNTIF({row},MAX({row}))>1,\"several\",INDEX({names},1,MATCH(MAX({row}),{row},0)))");
-        let most = npv.iter().copied().fold(f64::NEG_INFINITY, f64::max);
-        let first: Vec<usize> = (0..npv.len()).filter(|&i| npv[i] == most).collect();
-        let best = match first.as_slice() {
+        // What rounding may make of a difference from the highest, as at the fill.
+        let level = level(worths);
+        let highest = level.first().map_or(0.0, |&i| worths[i].dust);
+        let dust: Vec<String> = worths.iter().map(|worth| literal(worth.dust.max(highest))).collect();
+        let text = format!(
+            "IF(SUMPRODUCT(({row}+{{{}}}>=MAX({row}))*1)>1,\"several\",INDEX({names},1,MATCH(MAX({row}),{row},0)))",
+            dust.join(",")
+        );
+        let best = match level.as_slice() {
             [i] => self.input.appraisal.choices[*i].name.clone(),
             _ => "several".to_owned(),
         };
@@ -215,6 +220,6 @@ impl Page<'_> {
     }
 }
 
-fn npv(side: &Side) -> Vec<f64> {
-    side.standings.iter().map(|standing| standing.totals.npv).collect()
+fn worths(side: &Side) -> Vec<Worth> {
+    side.standings.iter().map(|standing| standing.worth).collect()
 }
