@@ -28,7 +28,17 @@ pub struct FilledBook {
     pub output: Option<String>,
     pub status: Status,
     pub options: Vec<FilledOption>,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub appraisals: Vec<FilledAppraisal>,
     pub problems: Vec<Found>,
+}
+
+/// One of several appraisals in a workbook: its options stand in order among those of the workbook, too.
+#[derive(Serialize)]
+pub struct FilledAppraisal {
+    pub appraisal: String,
+    pub verdict: String,
+    pub options: Vec<FilledOption>,
 }
 
 #[derive(Serialize)]
@@ -97,6 +107,15 @@ impl FilledBook {
             output: Some(output),
             status: report.status(),
             options: report.options.iter().map(FilledOption::from).collect(),
+            appraisals: report
+                .appraisals
+                .iter()
+                .map(|appraisal| FilledAppraisal {
+                    appraisal: appraisal.name.clone(),
+                    verdict: appraisal.verdict.clone(),
+                    options: appraisal.options.iter().map(FilledOption::from).collect(),
+                })
+                .collect(),
             problems: report.problems.iter().map(Found::from).collect(),
         }
     }
@@ -108,6 +127,7 @@ impl FilledBook {
             output: None,
             status: Status::Failed,
             options: Vec::new(),
+            appraisals: Vec::new(),
             problems: problems.iter().map(Found::from).collect(),
         }
     }

@@ -20,6 +20,7 @@ mod numbers;
 mod own;
 mod package;
 mod patch;
+mod planfile;
 mod prices;
 mod readme;
 mod references;
