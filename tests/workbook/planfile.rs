@@ -104,7 +104,7 @@ fn the_audit_says_which_plan_it_was() {
         .filter_map(|(_, cell)| if let Stored::Text(text) = cell.value { Some(text) } else { None })
         .collect();
     let plan = parsed(PLAN);
-    for due in ["shelf.toml", plan.sha256(), "3.5% (from shelf.toml line 4, basis)"] {
+    for due in ["shelf.toml", &plan.sha256(), "3.5% (from shelf.toml line 4, basis)"] {
         assert!(texts.iter().any(|text| text == due), "{due}: {texts:#?}");
     }
     assert_eq!(plan.sha256().len(), 64);

@@ -15,7 +15,7 @@ use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
 use crate::package::Package;
 use crate::plan::{Plan, Stale, Ways, plan_targets};
-use crate::planfile::{Part, PlanFile};
+use crate::planfile::Part;
 use crate::problem::{Place, Problem, Result};
 use crate::references::SheetRange;
 use crate::report::{AppraisalReport, Companion, OptionReport, option_reports};
@@ -237,12 +237,11 @@ fn meta(
         std::iter::once(&outcome.basis).chain(own).map(|basis| basis.canonical() + "\n").collect()
     };
     let bases: String = outcomes.iter().map(of).collect();
-    let plan = |text: fn(&PlanFile) -> &str| request.plan.as_ref().map(|plan| text(plan).to_owned());
     Meta {
         input_name: package.file_name().to_owned(),
         input_sha256: sha256(package.bytes()),
         basis_sha256: sha256(bases.as_bytes()),
-        plan: plan(PlanFile::name).zip(plan(PlanFile::sha256)),
+        plan: request.plan.as_ref().map(|plan| (plan.name().to_owned(), plan.sha256())),
         appraisal: appraisal.map(str::to_owned),
         version: env!("CARGO_PKG_VERSION").to_owned(),
         as_of: request.as_of.clone(),
