@@ -4,7 +4,7 @@ use std::collections::{BTreeMap, BTreeSet};
 use std::path::Path;
 
 use hence_core::{Basis, Catalogue, Compounding, Spec};
-use sha2::{Digest, Sha256};
+use serde::{Deserialize, Serialize};
 
 use crate::appraisal::{Appraisal, Covered, Given, Setting, Stated};
 use crate::companions::companions;
@@ -25,12 +25,13 @@ use crate::references::{Cell, SheetRange};
 use crate::report::{Report, option_reports};
 use crate::resolve::{Options, resolve};
 use crate::sheets::{AuditInput, Meta, SheetNames, VERDICT_AGREES, build};
+use crate::shelf::{Record, prepare, record_part, sealed, sha256};
 use crate::stale;
 use crate::valuation::{from_core, value};
 use crate::verify::{Expected, verify};
 
 /// What the run is told besides the workbook.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
 pub struct FillRequest {
     /// Value on this basis, and write it into the basis cell.
     pub basis: Option<String>,
@@ -72,6 +73,8 @@ pub struct Filled {
     pub bytes: Vec<u8>,
     /// What was found and done.
     pub report: Report,
+    /// From what it was made: hashes and version.
+    pub meta: Meta,
 }
 
 /// Fills one workbook file. The output appears whole under its name, or not at all; the input is never written.
@@ -170,7 +173,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         }
     }
 
-    let meta = meta(package, &outcomes, request);
+    let meta = meta(package, &outcomes, request, catalogue);
     let input = AuditInput {
         appraisal: &appraisal,
         outcomes: &outcomes,
@@ -198,6 +201,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         },
     )?;
     let mut changes = grafted.changes;
+    prepare(package, &mut changes)?;
     let mut verdict = built.verdict;
     patch(&mut changes, package, &book, &plan.writes)?;
     let mut bytes = package.write(&changes)?;
@@ -210,12 +214,6 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
             verdict = follow::AWAITS.to_owned();
         }
     }
-    changes.forget_contents();
-    verify(
-        package,
-        &bytes,
-        &Expected { changes: &changes, writes: &plan.writes, own_sheets: &grafted.sheets },
-    )?;
     let mut options = option_reports(&appraisal, &outcomes, &companions);
     let own = declared.iter().flat_map(|declared| &declared.choices);
     for (option, choice) in options.iter_mut().zip(own) {
@@ -223,7 +221,15 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
     }
     let not_valued = not_valued(&appraisal);
     let report = Report { options, problems, filled: plan.filled, ticked: plan.ticked, not_valued, verdict };
-    Ok(Filled { bytes, report })
+    let bytes = sealed(bytes, &Record::filled(&meta, &report))?;
+    changes.add.push((record_part().to_owned(), Vec::new()));
+    changes.forget_contents();
+    verify(
+        package,
+        &bytes,
+        &Expected { changes: &changes, writes: &plan.writes, own_sheets: &grafted.sheets },
+    )?;
+    Ok(Filled { bytes, report, meta })
 }
 
 /// Rows of numbers along the years that no role names.
@@ -424,7 +430,7 @@ fn foreign_sheets(book: &Workbook, previous: &[OwnSheet]) -> Vec<String> {
     sheets.filter(|(i, _)| !own.contains(i)).map(|(_, sheet)| sheet.name.clone()).collect()
 }
 
-fn meta(package: &Package, outcomes: &[ChoiceOutcome], request: &FillRequest) -> Meta {
+fn meta(package: &Package, outcomes: &[ChoiceOutcome], request: &FillRequest, catalogue: &Catalogue) -> Meta {
     let of = |outcome: &ChoiceOutcome| -> String {
         let own = outcome.streams.iter().filter_map(|stream| stream.own.as_ref()).map(|own| &own.basis);
         std::iter::once(&outcome.basis).chain(own).map(|basis| basis.canonical() + "\n").collect()
@@ -434,15 +440,12 @@ fn meta(package: &Package, outcomes: &[ChoiceOutcome], request: &FillRequest) ->
         input_name: package.file_name().to_owned(),
         input_sha256: sha256(package.bytes()),
         basis_sha256: sha256(bases.as_bytes()),
+        request_sha256: request.sha256(catalogue),
         version: env!("CARGO_PKG_VERSION").to_owned(),
         as_of: request.as_of.clone(),
         by: request.by.clone(),
         formulas: request.formulas,
     }
-}
-
-fn sha256(bytes: &[u8]) -> String {
-    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
 /// A patch knows the cell but not the sheet: the sheet's name is added here.
@@ -462,6 +465,7 @@ fn differs() -> Vec<String> {
         "Filled cells and hence's own sheets; every other cell is as it was.",
         "The sheet list, the names hence_verdict, hence_own and hence_digest, and cell formats appended for the new sheets.",
         "The list of content types and the workbook's relationships; the calculation chain is removed.",
+        "A record of this fill for later runs (the part hence/record.json), which spreadsheet programs pass over.",
         "The workbook is marked to be calculated when it is opened.",
         "Stored results of formulas that depend on filled cells are removed, so that nothing stale can be read.",
     ]

@@ -70,6 +70,8 @@ pub struct Meta {
     pub input_sha256: String,
     /// SHA-256 of the canonical basis texts, one a line, by option.
     pub basis_sha256: String,
+    /// SHA-256 of what was asked for: [`FillRequest::sha256`](crate::shelf::FillRequest::sha256).
+    pub request_sha256: String,
     /// The version of hence.
     pub version: String,
     /// `--as-of`, as given.

@@ -149,6 +149,7 @@ impl Page {
         self.pair("Workbook", &meta.input_name);
         self.pair("SHA-256 of the workbook", &meta.input_sha256);
         self.pair("SHA-256 of the basis texts", &meta.basis_sha256);
+        self.pair("SHA-256 of what was asked for", &meta.request_sha256);
         self.pair("Made by", &format!("hence {}", meta.version));
         self.pair("As of", meta.as_of.as_deref().unwrap_or(""));
         self.pair("By", meta.by.as_deref().unwrap_or(""));
