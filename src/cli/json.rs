@@ -33,17 +33,18 @@ pub struct FilledBook {
     pub problems: Vec<Found>,
 }
 
-/// One of several appraisals in a workbook: its options stand in order among those of the workbook, too.
+/// One of several appraisals in a workbook; its options bear its name.
 #[derive(Serialize)]
 pub struct FilledAppraisal {
     pub appraisal: String,
     pub verdict: String,
-    pub options: Vec<FilledOption>,
 }
 
 #[derive(Serialize)]
 pub struct FilledOption {
     pub option: String,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub appraisal: Option<String>,
     pub npv: f64,
     pub pv_benefits: f64,
     pub pv_costs: f64,
@@ -74,6 +75,7 @@ impl From<&OptionReport> for FilledOption {
         let totals = option.totals();
         FilledOption {
             option: option.name.clone(),
+            appraisal: option.appraisal.clone(),
             npv: totals.npv,
             pv_benefits: totals.pv_benefits,
             pv_costs: totals.pv_costs,
@@ -113,7 +115,6 @@ impl FilledBook {
                 .map(|appraisal| FilledAppraisal {
                     appraisal: appraisal.name.clone(),
                     verdict: appraisal.verdict.clone(),
-                    options: appraisal.options.iter().map(FilledOption::from).collect(),
                 })
                 .collect(),
             problems: report.problems.iter().map(Found::from).collect(),

@@ -104,13 +104,11 @@ pub fn table(rows: &[Vec<String>]) -> String {
 /// The report on one filled workbook.
 pub fn report(input: &str, output: &str, report: &Report) -> String {
     let mut text = format!("{input} -> {output}\n");
-    for appraisal in &report.appraisals {
-        text.push_str(&format!("\nAppraisal {}\n", appraisal.name));
-        text.push_str(&options(&appraisal.options));
-        text.push_str(&format!("\nVerdict of {}: {}.\n", appraisal.name, appraisal.verdict));
-    }
-    if report.appraisals.is_empty() {
-        text.push_str(&options(&report.options));
+    for own in report.options.chunk_by(|a, b| a.appraisal == b.appraisal) {
+        let appraisal = report.appraisals.iter().find(|a| own[0].appraisal.as_ref() == Some(&a.name));
+        text.extend(appraisal.map(|appraisal| format!("\nAppraisal {}\n\n", appraisal.name)));
+        text.push_str(&options(own));
+        text.extend(appraisal.map(|a| format!("\nVerdict of {}: {}.\n", a.name, a.verdict)));
     }
     text.push_str(&not_valued(&report.not_valued));
     text.push_str(&format!(

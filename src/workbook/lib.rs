@@ -41,6 +41,7 @@ pub mod resolve;
 pub mod roles;
 pub mod schedules;
 pub mod sheets;
+pub mod shelf;
 mod splice;
 pub mod stale;
 pub mod start;

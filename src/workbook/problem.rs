@@ -2,10 +2,13 @@
 
 use std::fmt;
 
+use serde::{Deserialize, Serialize};
+
+use crate::codes::CODES;
 use crate::references::{Range, quote_sheet};
 
 /// How bad a problem is.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, serde::Serialize)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
 #[serde(rename_all = "lowercase")]
 pub enum Severity {
     /// Worth knowing; changes nothing.
@@ -17,7 +20,7 @@ pub enum Severity {
 }
 
 /// Where in a workbook a problem is.
-#[derive(Clone, Debug, Default, PartialEq, Eq, Hash)]
+#[derive(Clone, Debug, Default, PartialEq, Eq, Hash, Serialize, Deserialize)]
 pub struct Place {
     /// The sheet's name as the user sees it.
     pub sheet: Option<String>,
@@ -74,7 +77,7 @@ impl fmt::Display for Place {
 }
 
 /// One problem. Codes are short stable kebab words, listed in [`CODES`](crate::codes::CODES).
-#[derive(Clone, Debug, PartialEq, Eq, Hash)]
+#[derive(Clone, Debug, PartialEq, Eq, Hash, Serialize)]
 pub struct Problem {
     /// The stable word.
     pub code: &'static str,
@@ -104,6 +107,27 @@ impl Problem {
     pub fn hint(mut self, hint: impl Into<String>) -> Self {
         self.hint = Some(hint.into());
         self
+    }
+}
+
+/// A problem as another process wrote it down.
+#[derive(Deserialize)]
+struct Written {
+    #[serde(rename = "code")]
+    word: String,
+    severity: Severity,
+    place: Place,
+    message: String,
+    hint: Option<String>,
+}
+
+impl<'de> Deserialize<'de> for Problem {
+    fn deserialize<D: serde::Deserializer<'de>>(from: D) -> std::result::Result<Self, D::Error> {
+        let Written { word, severity, place, message, hint } = Written::deserialize(from)?;
+        let known = CODES.iter().find(|code| code.code == word);
+        let unknown = || serde::de::Error::custom(format!("{word} is no code of a problem"));
+        let known = known.ok_or_else(unknown)?;
+        Ok(Problem { severity, hint, ..Problem::error(known.code, place, message) })
     }
 }
 

@@ -1,6 +1,7 @@
 //! What a run found, for those who print it: one report a workbook, one entry an option.
 
 use hence_core::Payback;
+use serde::{Deserialize, Serialize};
 
 use crate::appraisal::{Appraisal, StreamKind};
 use crate::outcome::{ChoiceOutcome, Totals};
@@ -8,7 +9,7 @@ use crate::problem::{Problem, Severity};
 use crate::welfare;
 
 /// How a run on one workbook ended.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, serde::Serialize)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
 #[serde(rename_all = "lowercase")]
 pub enum Status {
     /// Nothing is wrong with it.
@@ -28,7 +29,7 @@ impl Status {
 }
 
 /// The same option under the schedule that its body wants run beside the declared one.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 pub struct Companion {
     /// The schedule's id.
     pub id: String,
@@ -39,7 +40,7 @@ pub struct Companion {
 }
 
 /// What flows that are not small against consumption are worth at the base.
-#[derive(Clone, Copy, Debug, PartialEq, serde::Serialize)]
+#[derive(Clone, Copy, Debug, PartialEq, Serialize, Deserialize)]
 pub struct Exact {
     /// The amount that changes welfare as much; none where no amount does.
     pub equivalent: Option<f64>,
@@ -52,14 +53,18 @@ pub struct Exact {
 }
 
 /// What one option comes to.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 pub struct OptionReport {
     /// Its name.
     pub name: String,
+    /// Which of several appraisals of the workbook it is of.
+    pub appraisal: Option<String>,
     /// It is the baseline.
     pub baseline: bool,
     /// The canonical basis.
     pub basis: String,
+    /// The canonical basis that the workbook itself declares, where it was valued on another.
+    pub declared: Option<String>,
     /// The basis in words, with its source.
     pub basis_words: String,
     /// The base in words.
@@ -112,18 +117,16 @@ impl OptionReport {
 }
 
 /// One of several appraisals in a workbook.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
 pub struct AppraisalReport {
-    /// Its name.
+    /// Its name, which its options bear too.
     pub name: String,
-    /// Its options.
-    pub options: Vec<OptionReport>,
     /// The verdict as written to its audit summary.
     pub verdict: String,
 }
 
 /// The report on one workbook.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 pub struct Report {
     /// Its options; of several appraisals, all of them in order.
     pub options: Vec<OptionReport>,
@@ -165,8 +168,10 @@ pub(crate) fn option_reports(
         .enumerate()
         .map(|(i, (choice, outcome))| OptionReport {
             name: choice.name.clone(),
+            appraisal: None,
             baseline: appraisal.baseline == Some(i),
             basis: outcome.basis.canonical(),
+            declared: None,
             basis_words: outcome.basis.words(),
             base: outcome.base_words.clone(),
             timing: outcome.timing_sentence.clone(),

@@ -2,10 +2,9 @@
 
 use std::collections::{BTreeMap, BTreeSet};
 
-use hence_core::Catalogue;
-use sha2::{Digest, Sha256};
+use hence_core::{Basis, Catalogue};
 
-use crate::appraisal::Appraisal;
+use crate::appraisal::{Appraisal, Choice};
 use crate::companions::companions;
 use crate::compare::{Sensitivity, sensitivity};
 use crate::follow;
@@ -22,6 +21,7 @@ use crate::report::{AppraisalReport, Companion, OptionReport, option_reports};
 use crate::resolve::{Options, resolve};
 use crate::roles::key;
 use crate::sheets::{AuditInput, Carried, Meta, SheetNames, Sibling};
+use crate::shelf::sha256;
 use crate::valuation::value;
 
 use super::basis::{plan_basis, require_basis, state};
@@ -54,6 +54,8 @@ pub(super) struct Work {
     pub carried: Vec<Carried>,
     /// Cells whose values are not known until a spreadsheet program computes them.
     pub unknown: Vec<SheetRange>,
+    /// The canonical basis that each option declares itself, where the command line gives another.
+    declared: Vec<Option<String>>,
     /// What an earlier fill wrote, by place.
     earlier: BTreeMap<String, String>,
     meta: Meta,
@@ -93,7 +95,10 @@ impl Work {
         let layout = Layout::new(&appraisal, &outcomes, &names);
         let earlier = own::written(package, book, left, &names)?;
         let carried = own::carried(package, book, left, &names)?;
-        let meta = meta(package, &outcomes, request, name.as_deref());
+        let meta = meta(run, &outcomes, name.as_deref());
+        let canonical = |choice: &Choice| {
+            Basis::parse(&choice.basis.value, catalogue).ok().map(|basis| basis.canonical())
+        };
         let mut work = Work {
             name,
             appraisal,
@@ -106,6 +111,7 @@ impl Work {
             problems,
             carried,
             unknown: Vec::new(),
+            declared: declared.iter().flat_map(|declared| &declared.choices).map(canonical).collect(),
             earlier,
             meta,
         };
@@ -161,13 +167,19 @@ impl Work {
 
     /// What it comes to, an entry an option.
     pub(super) fn options(&self) -> Vec<OptionReport> {
-        option_reports(&self.appraisal, &self.outcomes, &self.companions)
+        let mut options = option_reports(&self.appraisal, &self.outcomes, &self.companions);
+        for option in &mut options {
+            option.appraisal.clone_from(&self.name);
+        }
+        for (option, declared) in options.iter_mut().zip(&self.declared) {
+            option.declared.clone_from(declared);
+        }
+        options
     }
 
     /// Its part of the report, where the workbook has several.
     pub(super) fn report(&self, verdict: &str) -> Option<AppraisalReport> {
-        let name = self.name.clone()?;
-        Some(AppraisalReport { name, options: self.options(), verdict: verdict.to_owned() })
+        Some(AppraisalReport { name: self.name.clone()?, verdict: verdict.to_owned() })
     }
 
     /// Rows of numbers along the years that no role names.
@@ -226,23 +238,22 @@ pub(super) fn left_for(parts: &[Option<Part>], own: Vec<OwnSheet>) -> Vec<Vec<Ow
     left
 }
 
-fn meta(
-    package: &Package,
-    outcomes: &[ChoiceOutcome],
-    request: &FillRequest,
-    appraisal: Option<&str>,
-) -> Meta {
-    let of = |outcome: &ChoiceOutcome| -> String {
-        let own = outcome.streams.iter().filter_map(|stream| stream.own.as_ref()).map(|own| &own.basis);
-        std::iter::once(&outcome.basis).chain(own).map(|basis| basis.canonical() + "\n").collect()
-    };
-    let bases: String = outcomes.iter().map(of).collect();
+/// From what an output is made, whichever of its appraisals is meant.
+pub(super) fn meta_of_all(works: &[Work]) -> Meta {
+    let outcomes = works.iter().flat_map(|work| &work.outcomes);
+    Meta { basis_sha256: basis_sha256(outcomes), appraisal: None, ..works[0].meta.clone() }
+}
+
+/// From what an appraisal's sheets are made.
+fn meta(run: &Run<'_>, outcomes: &[ChoiceOutcome], appraisal: Option<&str>) -> Meta {
+    let Run { package, request, catalogue, .. } = *run;
     Meta {
         input_name: package.file_name().to_owned(),
         input_sha256: sha256(package.bytes()),
-        basis_sha256: sha256(bases.as_bytes()),
+        basis_sha256: basis_sha256(outcomes.iter()),
         plan: request.plan.as_ref().map(|plan| (plan.name().to_owned(), plan.sha256())),
         appraisal: appraisal.map(str::to_owned),
+        request_sha256: request.sha256(catalogue),
         version: env!("CARGO_PKG_VERSION").to_owned(),
         as_of: request.as_of.clone(),
         by: request.by.clone(),
@@ -250,6 +261,11 @@ fn meta(
     }
 }
 
-fn sha256(bytes: &[u8]) -> String {
-    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
+/// SHA-256 of the canonical basis texts, one a line, by option.
+fn basis_sha256<'a>(outcomes: impl Iterator<Item = &'a ChoiceOutcome>) -> String {
+    let of = |outcome: &ChoiceOutcome| -> String {
+        let own = outcome.streams.iter().filter_map(|stream| stream.own.as_ref()).map(|own| &own.basis);
+        std::iter::once(&outcome.basis).chain(own).map(|basis| basis.canonical() + "\n").collect()
+    };
+    sha256(outcomes.map(of).collect::<String>().as_bytes())
 }
