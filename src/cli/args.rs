@@ -85,6 +85,16 @@ pub struct Roles {
     /// Give a role to cells without a defined name: --role years="Sheet1!C4:Z4"
     #[arg(long = "role", value_name = "ROLE=RANGE")]
     pub roles: Vec<String>,
+    /// A plan file (.toml) that says what is where in a workbook without names; `hence plan` proposes one
+    #[arg(long, value_name = "FILE")]
+    pub plan: Option<PathBuf>,
+}
+
+#[derive(Debug, Args)]
+pub struct OfSeveral {
+    /// Which of several appraisals in the plan
+    #[arg(long, value_name = "NAME", requires = "plan")]
+    pub appraisal: Option<String>,
 }
 
 #[derive(Debug, Args)]
@@ -168,6 +178,8 @@ pub struct Check {
     #[command(flatten)]
     pub roles: Roles,
     #[command(flatten)]
+    pub of: OfSeveral,
+    #[command(flatten)]
     pub document: Document,
 }
 
@@ -179,6 +191,8 @@ pub struct Compare {
     pub against: Against,
     #[command(flatten)]
     pub roles: Roles,
+    #[command(flatten)]
+    pub of: OfSeveral,
     /// Map which option is best where, over two parts of a Ramsey basis
     #[arg(long, value_name = "PARTS")]
     pub map: Option<MapOver>,
@@ -222,6 +236,8 @@ pub struct Brief {
     pub against: Against,
     #[command(flatten)]
     pub roles: Roles,
+    #[command(flatten)]
+    pub of: OfSeveral,
     #[command(flatten)]
     pub signature: Signature,
     #[command(flatten)]
@@ -289,6 +305,8 @@ pub struct Draws {
     pub percentiles: Vec<f64>,
     #[command(flatten)]
     pub roles: Roles,
+    #[command(flatten)]
+    pub of: OfSeveral,
     /// Every draw as comma-separated values: its parts, its rate, the net present value of each option as it stands
     #[arg(long, conflicts_with = "json")]
     pub csv: bool,

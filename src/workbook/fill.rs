@@ -7,6 +7,7 @@ use std::collections::{BTreeMap, BTreeSet};
 use std::path::Path;
 
 use hence_core::Catalogue;
+use serde::{Deserialize, Serialize};
 
 use crate::appraisal::{Appraisal, Covered};
 use crate::follow;
@@ -21,14 +22,15 @@ use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::references::{Cell, SheetRange};
 use crate::report::Report;
-use crate::sheets::{self, Composed, VERDICT_AGREES};
+use crate::sheets::{self, Composed, Meta, VERDICT_AGREES};
+use crate::shelf::{Record, prepare, record_part, sealed};
 use crate::stale;
 use crate::verify::{Expected, verify};
 
 use work::{Run, Work};
 
 /// What the run is told besides the workbook.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
 pub struct FillRequest {
     /// Value on this basis, and write it into the basis cell.
     pub basis: Option<String>,
@@ -73,6 +75,8 @@ pub struct Filled {
     pub bytes: Vec<u8>,
     /// What was found and done.
     pub report: Report,
+    /// From what it was made: hashes and version.
+    pub meta: Meta,
 }
 
 /// Fills one workbook file. The output appears whole under its name, or not at all; the input is never written.
@@ -156,6 +160,7 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         },
     )?;
     let mut changes = grafted.changes;
+    prepare(package, &mut changes)?;
     patch(&mut changes, package, &book, &writes)?;
     let mut bytes = package.write(&changes)?;
     let unknown: Vec<SheetRange> = works.iter().flat_map(|work| work.unknown.clone()).collect();
@@ -165,9 +170,12 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         patch(&mut changes, package, &book, &writes)?;
         bytes = package.write(&changes)?;
     }
+    let (report, meta) = (report(&works, built.verdicts), work::meta_of_all(&works));
+    let bytes = sealed(bytes, &Record::filled(&meta, &report))?;
+    changes.add.push((record_part().to_owned(), Vec::new()));
     changes.forget_contents();
     verify(package, &bytes, &Expected { changes: &changes, writes: &writes, own_sheets: &grafted.sheets })?;
-    Ok(Filled { bytes, report: report(&works, built.verdicts) })
+    Ok(Filled { bytes, report, meta })
 }
 
 /// Every appraisal, resolved, valued and decided.
@@ -300,6 +308,7 @@ fn differs() -> Vec<String> {
         "Filled cells and hence's own sheets; every other cell is as it was.",
         "The sheet list, the names hence_verdict, hence_own and hence_digest, and cell formats appended for the new sheets.",
         "The list of content types and the workbook's relationships; the calculation chain is removed.",
+        "A record of this fill for later runs (the part hence/record.json), which spreadsheet programs pass over.",
         "The workbook is marked to be calculated when it is opened.",
         "Stored results of formulas that depend on filled cells are removed, so that nothing stale can be read.",
     ]

@@ -312,7 +312,7 @@ impl Package {
 }
 
 /// SHA-256 as lower-case hexadecimal.
-pub(crate) fn sha256(bytes: &[u8]) -> String {
+pub fn sha256(bytes: &[u8]) -> String {
     Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
 }
 

@@ -44,26 +44,60 @@
 
 mod apply;
 mod parse;
+mod propose;
 
 use std::path::Path;
 
+use serde::{Deserialize, Serialize};
+use sha2::{Digest, Sha256};
+
 use crate::model::Workbook;
-use crate::problem::{Place, Problem, Result};
+use crate::problem::{Place, Problem, Result, WorkbookError};
 
 pub use apply::Part;
 pub(crate) use apply::{Planned, Says};
 use parse::Whole;
+pub use propose::{Proposal, propose};
 
 /// The longest plan that is read, in bytes.
 const MAX_BYTES: u64 = 1 << 20;
 
-/// A plan file, read.
-#[derive(Clone, Debug, PartialEq)]
+/// A plan file, read. Stored, it is its text.
+#[derive(Clone, Debug, Serialize, Deserialize)]
+#[serde(try_from = "Stored", into = "Stored")]
 pub struct PlanFile {
-    name: String,
-    sha256: String,
+    stored: Stored,
     whole: Whole,
+}
+
+/// All that a plan is made from.
+#[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
+struct Stored {
+    name: String,
+    text: String,
     only: Option<String>,
+}
+
+impl PartialEq for PlanFile {
+    fn eq(&self, other: &Self) -> bool {
+        self.stored == other.stored
+    }
+}
+
+impl Eq for PlanFile {}
+
+impl From<PlanFile> for Stored {
+    fn from(plan: PlanFile) -> Self {
+        plan.stored
+    }
+}
+
+impl TryFrom<Stored> for PlanFile {
+    type Error = WorkbookError;
+
+    fn try_from(stored: Stored) -> Result<Self> {
+        Ok(PlanFile { whole: parse::parse(&stored.text)?, stored })
+    }
 }
 
 impl PlanFile {
@@ -104,19 +138,22 @@ impl PlanFile {
     /// # Ok::<(), hence_workbook::problem::WorkbookError>(())
     /// ```
     pub fn parse(name: &str, text: &str) -> Result<Self> {
-        let whole = parse::parse(text)?;
-        let sha256 = crate::package::sha256(text.as_bytes());
-        Ok(PlanFile { name: name.to_owned(), sha256, whole, only: None })
+        Stored { name: name.to_owned(), text: text.to_owned(), only: None }.try_into()
     }
 
     /// The file's name, without folders.
     pub fn name(&self) -> &str {
-        &self.name
+        &self.stored.name
     }
 
     /// SHA-256 of its text, lower-case hexadecimal: part of what determines an output.
-    pub fn sha256(&self) -> &str {
-        &self.sha256
+    pub fn sha256(&self) -> String {
+        Sha256::digest(self.stored.text.as_bytes()).iter().map(|byte| format!("{byte:02x}")).collect()
+    }
+
+    /// The one of its appraisals that it is for, where one was chosen.
+    fn chosen(&self) -> Option<&str> {
+        self.stored.only.as_deref()
     }
 
     /// The part that a command about one appraisal reads.
@@ -127,7 +164,7 @@ impl PlanFile {
     /// The same plan for one of its appraisals alone.
     #[must_use]
     pub fn only(mut self, appraisal: Option<String>) -> Self {
-        self.only = appraisal;
+        self.stored.only = appraisal;
         self
     }
 }

@@ -57,6 +57,8 @@ pub struct Exact {
 pub struct OptionReport {
     /// Its name.
     pub name: String,
+    /// Which of several appraisals of the workbook it is of.
+    pub appraisal: Option<String>,
     /// It is the baseline.
     pub baseline: bool,
     /// The canonical basis.
@@ -115,12 +117,10 @@ impl OptionReport {
 }
 
 /// One of several appraisals in a workbook.
-#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
 pub struct AppraisalReport {
-    /// Its name.
+    /// Its name, which its options bear too.
     pub name: String,
-    /// Its options.
-    pub options: Vec<OptionReport>,
     /// The verdict as written to its audit summary.
     pub verdict: String,
 }
@@ -168,6 +168,7 @@ pub(crate) fn option_reports(
         .enumerate()
         .map(|(i, (choice, outcome))| OptionReport {
             name: choice.name.clone(),
+            appraisal: None,
             baseline: appraisal.baseline == Some(i),
             basis: outcome.basis.canonical(),
             declared: None,

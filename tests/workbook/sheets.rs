@@ -140,6 +140,7 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
         basis_sha256: "1".repeat(64),
         plan: None,
         appraisal: None,
+        request_sha256: "2".repeat(64),
         version: "0.1.0".into(),
         as_of: Some("1 April 2026".into()),
         by: None,

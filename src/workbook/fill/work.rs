@@ -12,15 +12,16 @@ use crate::layout::Layout;
 use crate::model::Workbook;
 use crate::outcome::ChoiceOutcome;
 use crate::own::{self, OwnSheet};
-use crate::package::{Package, sha256};
+use crate::package::Package;
 use crate::plan::{Plan, Stale, Ways, plan_targets};
-use crate::planfile::{Part, PlanFile};
+use crate::planfile::Part;
 use crate::problem::{Place, Problem, Result};
 use crate::references::SheetRange;
 use crate::report::{AppraisalReport, Companion, OptionReport, option_reports};
 use crate::resolve::{Options, resolve};
 use crate::roles::key;
 use crate::sheets::{AuditInput, Carried, Meta, SheetNames, Sibling};
+use crate::shelf::sha256;
 use crate::valuation::value;
 
 use super::basis::{plan_basis, require_basis, state};
@@ -44,8 +45,6 @@ pub(super) struct Work {
     pub outcomes: Vec<ChoiceOutcome>,
     pub companions: Vec<Option<Companion>>,
     pub sensitivity: Sensitivity,
-    /// The canonical basis that the workbook itself declares for each option, where the command line gives another.
-    declared: Vec<Option<String>>,
     /// Its own sheets.
     pub names: SheetNames,
     pub layout: Layout,
@@ -55,6 +54,8 @@ pub(super) struct Work {
     pub carried: Vec<Carried>,
     /// Cells whose values are not known until a spreadsheet program computes them.
     pub unknown: Vec<SheetRange>,
+    /// The canonical basis that each option declares itself, where the command line gives another.
+    declared: Vec<Option<String>>,
     /// What an earlier fill wrote, by place.
     earlier: BTreeMap<String, String>,
     meta: Meta,
@@ -89,27 +90,28 @@ impl Work {
         let companions = companions(&appraisal, &outcomes, catalogue, &mut problems);
         let sensitivity = sensitivity(&appraisal, &outcomes, &request.against, catalogue)?;
         problems.extend(sensitivity.comparison.problems.iter().cloned());
-        let own = |choice: &Choice| Some(Basis::parse(&choice.basis.value, catalogue).ok()?.canonical());
-        let declared = declared.iter().flat_map(|declared| &declared.choices).map(own).collect();
         let name = part.and_then(|part| part.appraisal.clone());
         let names = SheetNames::choose_for(name.as_deref(), taken);
         let layout = Layout::new(&appraisal, &outcomes, &names);
         let earlier = own::written(package, book, left, &names)?;
         let carried = own::carried(package, book, left, &names)?;
-        let meta = meta(package, &outcomes, request, name.as_deref());
+        let meta = meta(run, &outcomes, name.as_deref());
+        let canonical = |choice: &Choice| {
+            Basis::parse(&choice.basis.value, catalogue).ok().map(|basis| basis.canonical())
+        };
         let mut work = Work {
             name,
             appraisal,
             outcomes,
             companions,
             sensitivity,
-            declared,
             names,
             layout,
             plan: Plan::default(),
             problems,
             carried,
             unknown: Vec::new(),
+            declared: declared.iter().flat_map(|declared| &declared.choices).map(canonical).collect(),
             earlier,
             meta,
         };
@@ -166,6 +168,9 @@ impl Work {
     /// What it comes to, an entry an option.
     pub(super) fn options(&self) -> Vec<OptionReport> {
         let mut options = option_reports(&self.appraisal, &self.outcomes, &self.companions);
+        for option in &mut options {
+            option.appraisal.clone_from(&self.name);
+        }
         for (option, declared) in options.iter_mut().zip(&self.declared) {
             option.declared.clone_from(declared);
         }
@@ -174,8 +179,7 @@ impl Work {
 
     /// Its part of the report, where the workbook has several.
     pub(super) fn report(&self, verdict: &str) -> Option<AppraisalReport> {
-        let name = self.name.clone()?;
-        Some(AppraisalReport { name, options: self.options(), verdict: verdict.to_owned() })
+        Some(AppraisalReport { name: self.name.clone()?, verdict: verdict.to_owned() })
     }
 
     /// Rows of numbers along the years that no role names.
@@ -234,27 +238,34 @@ pub(super) fn left_for(parts: &[Option<Part>], own: Vec<OwnSheet>) -> Vec<Vec<Ow
     left
 }
 
-fn meta(
-    package: &Package,
-    outcomes: &[ChoiceOutcome],
-    request: &FillRequest,
-    appraisal: Option<&str>,
-) -> Meta {
-    let of = |outcome: &ChoiceOutcome| -> String {
-        let own = outcome.streams.iter().filter_map(|stream| stream.own.as_ref()).map(|own| &own.basis);
-        std::iter::once(&outcome.basis).chain(own).map(|basis| basis.canonical() + "\n").collect()
-    };
-    let bases: String = outcomes.iter().map(of).collect();
-    let plan = |text: fn(&PlanFile) -> &str| request.plan.as_ref().map(|plan| text(plan).to_owned());
+/// From what an output is made, whichever of its appraisals is meant.
+pub(super) fn meta_of_all(works: &[Work]) -> Meta {
+    let outcomes = works.iter().flat_map(|work| &work.outcomes);
+    Meta { basis_sha256: basis_sha256(outcomes), appraisal: None, ..works[0].meta.clone() }
+}
+
+/// From what an appraisal's sheets are made.
+fn meta(run: &Run<'_>, outcomes: &[ChoiceOutcome], appraisal: Option<&str>) -> Meta {
+    let Run { package, request, catalogue, .. } = *run;
     Meta {
         input_name: package.file_name().to_owned(),
         input_sha256: package.sha256(),
-        basis_sha256: sha256(bases.as_bytes()),
-        plan: plan(PlanFile::name).zip(plan(PlanFile::sha256)),
+        basis_sha256: basis_sha256(outcomes.iter()),
+        plan: request.plan.as_ref().map(|plan| (plan.name().to_owned(), plan.sha256())),
         appraisal: appraisal.map(str::to_owned),
+        request_sha256: request.sha256(catalogue),
         version: env!("CARGO_PKG_VERSION").to_owned(),
         as_of: request.as_of.clone(),
         by: request.by.clone(),
         formulas: request.formulas,
     }
+}
+
+/// SHA-256 of the canonical basis texts, one a line, by option.
+fn basis_sha256<'a>(outcomes: impl Iterator<Item = &'a ChoiceOutcome>) -> String {
+    let of = |outcome: &ChoiceOutcome| -> String {
+        let own = outcome.streams.iter().filter_map(|stream| stream.own.as_ref()).map(|own| &own.basis);
+        std::iter::once(&outcome.basis).chain(own).map(|basis| basis.canonical() + "\n").collect()
+    };
+    sha256(outcomes.map(of).collect::<String>().as_bytes())
 }

@@ -53,8 +53,8 @@ impl PlanFile {
     pub fn parts(&self, book: &Workbook) -> Result<Vec<Part>> {
         let sheets = Sheets::of(self, book);
         if self.whole.appraisals.is_empty() {
-            if let Some(wanted) = &self.only {
-                let message = format!("{} has one appraisal, and `{wanted}` is asked for", self.name);
+            if let Some(wanted) = self.chosen() {
+                let message = format!("{} has one appraisal, and `{wanted}` is asked for", self.name());
                 return Err(Problem::error("plan-appraisal", Place::default(), message)
                     .hint("leave --appraisal out")
                     .into());
@@ -83,11 +83,11 @@ impl PlanFile {
         if !problems.is_empty() {
             return Err(problems.into());
         }
-        if let Some(wanted) = &self.only {
+        if let Some(wanted) = self.chosen() {
             let names: Vec<String> = parts.iter().filter_map(|part| part.appraisal.clone()).collect();
             parts.retain(|part| part.appraisal.as_deref().map(key) == Some(key(wanted)));
             if parts.is_empty() {
-                let message = format!("{} has no appraisal `{wanted}`", self.name);
+                let message = format!("{} has no appraisal `{wanted}`", self.name());
                 return Err(Problem::error("plan-appraisal", Place::default(), message)
                     .hint(format!("its appraisals are {}", names.join(", ")))
                     .into());
@@ -104,7 +104,7 @@ impl PlanFile {
         let mut parts = self.parts(book)?;
         if parts.len() > 1 {
             let names: Vec<&str> = parts.iter().filter_map(|part| part.appraisal.as_deref()).collect();
-            let message = format!("{} has {} appraisals: {}", self.name, names.len(), names.join(", "));
+            let message = format!("{} has {} appraisals: {}", self.name(), names.len(), names.join(", "));
             return Err(Problem::error("plan-appraisal", Place::default(), message)
                 .hint(format!("choose one: --appraisal \"{}\"", names[0]))
                 .into());
@@ -127,7 +127,7 @@ impl<'a> Sheets<'a> {
             book.sheets.iter().enumerate().filter(|(i, _)| !own.contains(i)).map(|(_, sheet)| sheet);
         let names =
             foreign.filter(|sheet| sheet.kind == SheetKind::Worksheet).map(|sheet| sheet.name.as_str());
-        Sheets { file: &plan.name, book, names: names.collect() }
+        Sheets { file: plan.name(), book, names: names.collect() }
     }
 
     fn place(&self, line: u32) -> Place {

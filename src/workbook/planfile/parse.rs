@@ -91,7 +91,7 @@ pub(super) fn parse(text: &str) -> Result<Whole> {
         for error in &errors {
             let line = error.span().map_or(1, |span| reader.line(span.start));
             let message = error.message().trim().lines().collect::<Vec<_>>().join("; ");
-            reader.report("plan-text", line, format!("is not written as TOML: {message}"), TEXT_HINT);
+            reader.fault("plan-text", line, format!("is not written as TOML: {message}"), TEXT_HINT);
         }
         return Err(reader.problems.into());
     }
@@ -101,7 +101,7 @@ pub(super) fn parse(text: &str) -> Result<Whole> {
     whole.appraisals = appraisals;
     if let (Some(option), false) = (whole.common.options.first(), whole.appraisals.is_empty()) {
         let message = "an option beside appraisals: nothing says to which of them it belongs";
-        reader.report(
+        reader.fault(
             "plan-text",
             option.line,
             message,
@@ -135,7 +135,7 @@ impl Reader<'_> {
         u32::try_from(before.matches('\n').count() + 1).unwrap_or(u32::MAX)
     }
 
-    fn report(&mut self, code: &'static str, line: u32, message: impl Into<String>, hint: impl Into<String>) {
+    fn fault(&mut self, code: &'static str, line: u32, message: impl Into<String>, hint: impl Into<String>) {
         self.problems.push(Problem::error(code, Place::line(line), message).hint(hint));
     }
 
@@ -143,7 +143,7 @@ impl Reader<'_> {
     fn wrong(&mut self, key: &str, value: &Spanned<DeValue<'_>>, wanted: &str) {
         let line = self.line(value.span().start);
         let found = kind(value.get_ref());
-        self.report("plan-text", line, format!("`{key}` is {found}, allowed is {wanted}"), TEXT_HINT);
+        self.fault("plan-text", line, format!("`{key}` is {found}, allowed is {wanted}"), TEXT_HINT);
     }
 
     /// One table with what is in it; of a plan, its appraisals besides.
@@ -167,24 +167,24 @@ impl Reader<'_> {
             }
         }
         if section.sheet.is_some() && !section.sheets.is_empty() {
-            self.report("plan-text", line, "has both `sheet` and `sheets`", "keep one of the two");
+            self.fault("plan-text", line, "has both `sheet` and `sheets`", "keep one of the two");
         }
         if section.name.is_some() && !section.sheets.is_empty() {
             let what = if is == Kind::Option { "options" } else { "appraisals" };
             let message =
                 format!("has both `name` and `sheets`, and {what} on several sheets are called as those");
-            self.report("plan-text", line, message, "take `name` out");
+            self.fault("plan-text", line, message, "take `name` out");
         }
         if is != Kind::Plan && section.name.is_none() && section.sheet.is_none() && section.sheets.is_empty()
         {
             let message = format!("{} has neither a name nor a sheet", is.words());
-            self.report("plan-text", line, message, "add name = \"...\", or sheet = \"...\"");
+            self.fault("plan-text", line, message, "add name = \"...\", or sheet = \"...\"");
         }
         section.entries.sort_by_key(|entry| entry.line);
         if is == Kind::Option {
             for entry in section.entries.iter().filter(|entry| entry.role.option.is_some()) {
                 let message = format!("`{}` names an option, and it stands below one", entry.word);
-                self.report(
+                self.fault(
                     "plan-text",
                     entry.line,
                     message,
@@ -205,7 +205,7 @@ impl Reader<'_> {
         } else {
             format!("the keys of {} are {keys}", is.words())
         };
-        self.report("plan-text", line, format!("`{name}` is no key of {}", is.words()), hint);
+        self.fault("plan-text", line, format!("`{name}` is no key of {}", is.words()), hint);
     }
 
     fn text_of(&mut self, key: &str, value: &Spanned<DeValue<'_>>) -> Option<(String, u32)> {
@@ -272,13 +272,13 @@ impl Reader<'_> {
             Ok(role) => role,
             Err(slip) => {
                 let slip = slip.replace(crate::roles::PREFIX, "");
-                self.report("unknown-role", line, slip, "the README lists the roles");
+                self.fault("unknown-role", line, slip, "the README lists the roles");
                 return None;
             }
         };
         let info = role.role.info();
         if info.way == Way::Own {
-            self.report("unknown-role", line, format!("{word} is hence's own name"), "take it out");
+            self.fault("unknown-role", line, format!("{word} is hence's own name"), "take it out");
             return None;
         }
         let what = if table == "roles" {
@@ -287,7 +287,7 @@ impl Reader<'_> {
             self.setting(&word, &role, value)?
         } else {
             let message = format!("`{word}` is no setting: {}", info.what);
-            self.report(
+            self.fault(
                 "plan-text",
                 line,
                 message,
@@ -312,7 +312,7 @@ impl Reader<'_> {
                 } else {
                     format!("write {word} = \"Sheet1!C5:Z5\"")
                 };
-                self.report("plan-text", line, message, hint);
+                self.fault("plan-text", line, message, hint);
                 None
             }
         }
@@ -369,7 +369,7 @@ impl Reader<'_> {
             let id = (entry.role.role, about(&entry.role.stream), about(&entry.role.option));
             if let Some(first) = seen.insert(id, entry.line) {
                 let message = format!("`{}` is given on line {first} too", entry.word);
-                self.report("plan-text", entry.line, message, "keep one of the two");
+                self.fault("plan-text", entry.line, message, "keep one of the two");
             }
         }
     }
@@ -381,7 +381,7 @@ impl Reader<'_> {
             let Some(name) = &section.name else { continue };
             if let Some(first) = seen.insert(key(name), section.line) {
                 let message = format!("`{name}` is described on line {first} too");
-                self.report("plan-text", section.line, message, "give each its own name");
+                self.fault("plan-text", section.line, message, "give each its own name");
             }
         }
     }

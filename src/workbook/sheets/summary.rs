@@ -159,6 +159,7 @@ impl Page {
             self.pair("SHA-256 of the plan", sha256);
         }
         self.pair("Appraisal", meta.appraisal.as_deref().unwrap_or(""));
+        self.pair("SHA-256 of what was asked for", &meta.request_sha256);
         self.pair("Made by", &format!("hence {}", meta.version));
         self.pair("As of", meta.as_of.as_deref().unwrap_or(""));
         self.pair("By", meta.by.as_deref().unwrap_or(""));

@@ -1,5 +1,11 @@
-//! A shelf of workbooks: what a run over many of them keeps of each.
+//! A shelf of workbooks: what a run over many of them asks for, and what it keeps of each.
 
 mod record;
+mod request;
+mod seal;
 
+pub use crate::package::sha256;
 pub use record::Record;
+pub use seal::record_of;
+
+pub(crate) use seal::{part as record_part, prepare, sealed};

@@ -4,6 +4,7 @@ use serde::{Deserialize, Serialize};
 
 use crate::problem::Problem;
 use crate::report::{Report, Status};
+use crate::sheets::Meta;
 
 /// One workbook of a run. Records pass between processes, so that each number comes back as it went.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
@@ -30,6 +31,21 @@ pub struct Record {
 }
 
 impl Record {
+    /// A workbook that was filled, before its output has a place.
+    pub fn filled(meta: &Meta, report: &Report) -> Self {
+        Record {
+            input: meta.input_name.clone(),
+            output: None,
+            input_sha256: Some(meta.input_sha256.clone()),
+            output_sha256: None,
+            basis_sha256: Some(meta.basis_sha256.clone()),
+            request_sha256: meta.request_sha256.clone(),
+            version: meta.version.clone(),
+            status: report.status(),
+            report: report.clone(),
+        }
+    }
+
     /// A workbook that was not filled.
     pub fn failed(input: String, request_sha256: String, problems: &[Problem]) -> Self {
         Record {
