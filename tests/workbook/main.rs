@@ -30,6 +30,7 @@ mod samples;
 mod scenario;
 mod sensitivity;
 mod sheets;
+mod shelf_summary;
 mod small;
 mod stale;
 mod stream_basis;
