@@ -78,7 +78,7 @@ pub fn check(package: &Package, request: &CheckRequest, catalogue: &Catalogue) -
         None => vec![None],
     };
     for part in parts {
-        let options = Options { roles: &request.roles, basis: None, plan: part.as_ref() };
+        let options = Options { roles: &request.roles, plan: part.as_ref(), ..Options::default() };
         report(&Seen::look(package, &book, &options, catalogue)?, &mut checked);
     }
     Ok(checked)

@@ -146,6 +146,7 @@ pub const CODES: &[Code] = codes! {
     }
     Names {
         "ambiguous-stream": "A target names a stream that is both a cost and a benefit.",
+        "decide": "A text is no rule that ranks options.",
         "duplicate-role": "Two ranges are given the same role for the same stream and option.",
         "loose-stream": "A stream has no option, in a workbook that has options.",
         "loose-target": "A target has no option, and the options give different values.",

@@ -13,6 +13,7 @@ pub mod codes;
 mod companions;
 pub mod compare;
 pub mod dated;
+pub mod decide;
 pub mod diagnose;
 mod drawing;
 pub mod draws;

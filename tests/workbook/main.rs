@@ -32,6 +32,7 @@ mod scenario;
 mod sensitivity;
 mod sheets;
 mod shelf;
+mod shelf_summary;
 mod small;
 mod stale;
 mod stream_basis;

@@ -53,6 +53,14 @@ impl Named {
         }
     }
 
+    /// Stated by the command line: a number where the text is one.
+    pub(super) fn told(role: Role, from: &str, text: &str) -> Self {
+        let text = text.trim();
+        let value = text.parse().map_or_else(|_| Value::Text(text.to_owned()), Value::Number);
+        let name = RoleName { role, stream: None, option: None };
+        Named::without_cell(name, from.to_owned(), value)
+    }
+
     /// Stated by a plan in no cell.
     fn without_cell(name: RoleName, from: String, value: Value) -> Self {
         let at = SheetRange::new("", Range::cell(Cell::new(0, 0)));
