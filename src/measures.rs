@@ -214,7 +214,7 @@ pub fn annual_equivalent(curve: &Curve, npv: f64, service_years: u32) -> Result<
 }
 
 /// Discounted payback: when the cumulated present value reaches zero.
-#[derive(Clone, Copy, Debug, Default, PartialEq)]
+#[derive(Clone, Copy, Debug, Default, PartialEq, serde::Serialize, serde::Deserialize)]
 pub struct Payback {
     /// The offset at which cumulated PV first reaches zero from below; none where it never does.
     pub first: Option<f64>,

@@ -85,6 +85,16 @@ pub struct Roles {
     /// Give a role to cells without a defined name: --role years="Sheet1!C4:Z4"
     #[arg(long = "role", value_name = "ROLE=RANGE")]
     pub roles: Vec<String>,
+    /// A plan file (.toml) that says what is where in a workbook without names; `hence plan` proposes one
+    #[arg(long, value_name = "FILE")]
+    pub plan: Option<PathBuf>,
+}
+
+#[derive(Debug, Args)]
+pub struct OfSeveral {
+    /// Which of several appraisals in the plan
+    #[arg(long, value_name = "NAME", requires = "plan")]
+    pub appraisal: Option<String>,
 }
 
 #[derive(Debug, Args)]
@@ -134,6 +144,13 @@ pub struct Fill {
     /// Change the basis from OLD to NEW; a workbook on another basis is refused
     #[arg(long, value_name = "OLD=NEW", conflicts_with = "basis")]
     pub replace: Option<String>,
+    /// Value at this base (a year, a financial year or a date), and write it into the base cell
+    #[arg(long, value_name = "YEAR")]
+    pub base: Option<String>,
+    /// Value in these prices, `real 2026`, and write them into the price basis cell; the workbook has to say how prices
+    /// change
+    #[arg(long, value_name = "PRICES")]
+    pub prices: Option<String>,
     #[command(flatten)]
     pub roles: Roles,
     /// What to write into the targets
@@ -168,6 +185,8 @@ pub struct Check {
     #[command(flatten)]
     pub roles: Roles,
     #[command(flatten)]
+    pub of: OfSeveral,
+    #[command(flatten)]
     pub document: Document,
 }
 
@@ -179,6 +198,8 @@ pub struct Compare {
     pub against: Against,
     #[command(flatten)]
     pub roles: Roles,
+    #[command(flatten)]
+    pub of: OfSeveral,
     /// Map which option is best where, over two parts of a Ramsey basis
     #[arg(long, value_name = "PARTS")]
     pub map: Option<MapOver>,
@@ -222,6 +243,8 @@ pub struct Brief {
     pub against: Against,
     #[command(flatten)]
     pub roles: Roles,
+    #[command(flatten)]
+    pub of: OfSeveral,
     #[command(flatten)]
     pub signature: Signature,
     #[command(flatten)]
@@ -289,6 +312,8 @@ pub struct Draws {
     pub percentiles: Vec<f64>,
     #[command(flatten)]
     pub roles: Roles,
+    #[command(flatten)]
+    pub of: OfSeveral,
     /// Every draw as comma-separated values: its parts, its rate, the net present value of each option as it stands
     #[arg(long, conflicts_with = "json")]
     pub csv: bool,

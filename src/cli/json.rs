@@ -28,12 +28,23 @@ pub struct FilledBook {
     pub output: Option<String>,
     pub status: Status,
     pub options: Vec<FilledOption>,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub appraisals: Vec<FilledAppraisal>,
     pub problems: Vec<Found>,
+}
+
+/// One of several appraisals in a workbook; its options bear its name.
+#[derive(Serialize)]
+pub struct FilledAppraisal {
+    pub appraisal: String,
+    pub verdict: String,
 }
 
 #[derive(Serialize)]
 pub struct FilledOption {
     pub option: String,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub appraisal: Option<String>,
     pub npv: f64,
     pub pv_benefits: f64,
     pub pv_costs: f64,
@@ -64,6 +75,7 @@ impl From<&OptionReport> for FilledOption {
         let totals = option.totals();
         FilledOption {
             option: option.name.clone(),
+            appraisal: option.appraisal.clone(),
             npv: totals.npv,
             pv_benefits: totals.pv_benefits,
             pv_costs: totals.pv_costs,
@@ -97,6 +109,14 @@ impl FilledBook {
             output: Some(output),
             status: report.status(),
             options: report.options.iter().map(FilledOption::from).collect(),
+            appraisals: report
+                .appraisals
+                .iter()
+                .map(|appraisal| FilledAppraisal {
+                    appraisal: appraisal.name.clone(),
+                    verdict: appraisal.verdict.clone(),
+                })
+                .collect(),
             problems: report.problems.iter().map(Found::from).collect(),
         }
     }
@@ -108,6 +128,7 @@ impl FilledBook {
             output: None,
             status: Status::Failed,
             options: Vec::new(),
+            appraisals: Vec::new(),
             problems: problems.iter().map(Found::from).collect(),
         }
     }

@@ -12,6 +12,7 @@ use crate::appraisal::{Appraisal, COMMAND_LINE, Given};
 use crate::model::Workbook;
 use crate::outcome::{ChoiceOutcome, Totals};
 use crate::package::Package;
+use crate::planfile::PlanFile;
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::ranking::{Worth, best, over, ranks};
@@ -34,6 +35,8 @@ pub struct CompareRequest {
     pub against: Vec<String>,
     /// Roles for cells without a defined name: role, range.
     pub roles: Vec<(String, String)>,
+    /// What is where, for a workbook without names.
+    pub plan: Option<PlanFile>,
     /// Make a map over preference and this part of the rate: elasticity or growth.
     pub map: Option<Parameter>,
 }
@@ -134,7 +137,12 @@ struct Valued {
 pub fn compare(package: &Package, request: &CompareRequest, catalogue: &Catalogue) -> Result<Comparison> {
     let mut problems = preflight(package)?;
     let book = Workbook::read(package)?;
-    let mut appraisal = resolve(package, &book, &Options { roles: &request.roles, basis: None })?;
+    let plan = PlanFile::part_of(request.plan.as_ref(), &book)?;
+    let mut appraisal = resolve(
+        package,
+        &book,
+        &Options { roles: &request.roles, plan: plan.as_ref(), ..Options::default() },
+    )?;
     problems.append(&mut appraisal.problems);
     let (outcomes, found) = value(&appraisal, catalogue)?;
     problems.extend(found);

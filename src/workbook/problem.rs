@@ -2,10 +2,13 @@
 
 use std::fmt;
 
+use serde::{Deserialize, Serialize};
+
+use crate::codes::CODES;
 use crate::references::{Range, quote_sheet};
 
 /// How bad a problem is.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, serde::Serialize)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
 #[serde(rename_all = "lowercase")]
 pub enum Severity {
     /// Worth knowing; changes nothing.
@@ -17,7 +20,7 @@ pub enum Severity {
 }
 
 /// Where in a workbook a problem is.
-#[derive(Clone, Debug, Default, PartialEq, Eq, Hash)]
+#[derive(Clone, Debug, Default, PartialEq, Eq, Hash, Serialize, Deserialize)]
 pub struct Place {
     /// The sheet's name as the user sees it.
     pub sheet: Option<String>,
@@ -25,17 +28,24 @@ pub struct Place {
     pub range: Option<Range>,
     /// The defined name or heading it goes by.
     pub name: Option<String>,
+    /// The line, of a problem that is in a text of its own: a plan file.
+    pub line: Option<u32>,
 }
 
 impl Place {
     /// Cells of a sheet.
     pub fn cells(sheet: &str, range: Range) -> Self {
-        Place { sheet: Some(sheet.to_owned()), range: Some(range), name: None }
+        Place { sheet: Some(sheet.to_owned()), range: Some(range), ..Place::default() }
     }
 
     /// A defined name, where it has no cells to point at.
     pub fn name(name: &str) -> Self {
-        Place { sheet: None, range: None, name: Some(name.to_owned()) }
+        Place { name: Some(name.to_owned()), ..Place::default() }
+    }
+
+    /// A line of a text.
+    pub fn line(line: u32) -> Self {
+        Place { line: Some(line), ..Place::default() }
     }
 
     /// Adds the defined name or heading in brackets.
@@ -48,6 +58,9 @@ impl Place {
 
 impl fmt::Display for Place {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        if let Some(line) = self.line {
+            return write!(f, "line {line}");
+        }
         match (&self.sheet, self.range, &self.name) {
             (Some(sheet), Some(range), name) => {
                 write!(f, "{}!{range}", quote_sheet(sheet))?;
@@ -64,7 +77,7 @@ impl fmt::Display for Place {
 }
 
 /// One problem. Codes are short stable kebab words, listed in [`CODES`](crate::codes::CODES).
-#[derive(Clone, Debug, PartialEq, Eq, Hash)]
+#[derive(Clone, Debug, PartialEq, Eq, Hash, Serialize)]
 pub struct Problem {
     /// The stable word.
     pub code: &'static str,
@@ -94,6 +107,27 @@ impl Problem {
     pub fn hint(mut self, hint: impl Into<String>) -> Self {
         self.hint = Some(hint.into());
         self
+    }
+}
+
+/// A problem as another process wrote it down.
+#[derive(Deserialize)]
+struct Written {
+    #[serde(rename = "code")]
+    word: String,
+    severity: Severity,
+    place: Place,
+    message: String,
+    hint: Option<String>,
+}
+
+impl<'de> Deserialize<'de> for Problem {
+    fn deserialize<D: serde::Deserializer<'de>>(from: D) -> std::result::Result<Self, D::Error> {
+        let Written { word, severity, place, message, hint } = Written::deserialize(from)?;
+        let known = CODES.iter().find(|code| code.code == word);
+        let unknown = || serde::de::Error::custom(format!("{word} is no code of a problem"));
+        let known = known.ok_or_else(unknown)?;
+        Ok(Problem { severity, hint, ..Problem::error(known.code, place, message) })
     }
 }
 

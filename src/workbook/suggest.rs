@@ -343,7 +343,7 @@ fn signs(numbers: &[f64]) -> (bool, bool) {
 }
 
 /// A heading as part of a name: letters, digits and single underscores, at most 40 characters.
-fn slug(heading: &str) -> String {
+pub(crate) fn slug(heading: &str) -> String {
     let long = key(heading).replace(' ', "_");
     let cut: String = long.chars().take(40).collect();
     cut.trim_matches('_').to_owned()

@@ -2,7 +2,7 @@
 
 use std::path::PathBuf;
 
-use hence_workbook::check::{CheckReport, check};
+use hence_workbook::check::{CheckReport, CheckRequest, check};
 use serde::Serialize;
 
 use crate::args::Check;
@@ -34,11 +34,12 @@ struct DifferenceOut {
 /// Exit 0 when all agree, 1 on any difference.
 pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    let roles = super::roles(&args.roles)?;
+    let (roles, plan) = (super::roles(&args.roles)?, super::plan(&args.roles, Some(&args.of))?);
+    let request = CheckRequest { roles, plan };
     let shown = input::shown(&args.source.book);
     let progress = Progress::start();
     progress.doing(&format!("checking {shown}"));
-    let checked = input::open(&args.source.book).and_then(|package| check(&package, &roles, &catalogue));
+    let checked = input::open(&args.source.book).and_then(|package| check(&package, &request, &catalogue));
     drop(progress);
     match checked {
         Ok(report) => {

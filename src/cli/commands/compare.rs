@@ -20,8 +20,12 @@ pub fn run(args: &Compare, schedules: &Option<PathBuf>, terminal: &Terminal) -> 
         MapOver::Elasticity => Parameter::Elasticity,
         MapOver::Growth => Parameter::Growth,
     });
-    let roles = super::roles(&args.roles)?;
-    let request = CompareRequest { against: super::against(&args.against, &catalogue)?, roles, map };
+    let request = CompareRequest {
+        against: super::against(&args.against, &catalogue)?,
+        roles: super::roles(&args.roles)?,
+        plan: super::plan(&args.roles, Some(&args.of))?,
+        map,
+    };
     let output = output(args)?;
     let picture = picture_output(args)?;
     let shown = input::shown(&args.source.book);

@@ -21,7 +21,11 @@ const BAR: usize = 40;
 pub fn run(args: &args::Draws, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
     let texts = [&args.preference, &args.hazard, &args.elasticity, &args.growth];
-    let mut request = DrawsRequest { roles: super::roles(&args.roles)?, ..DrawsRequest::default() };
+    let mut request = DrawsRequest {
+        roles: super::roles(&args.roles)?,
+        plan: super::plan(&args.roles, Some(&args.of))?,
+        ..DrawsRequest::default()
+    };
     for (quantity, text) in Quantity::ALL.into_iter().zip(texts) {
         let Some(text) = text else { continue };
         let parsed = Distribution::parse(quantity, text).map_err(|error| super::typed(&error, text))?;

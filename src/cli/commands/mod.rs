@@ -14,9 +14,10 @@ pub mod start;
 use std::path::PathBuf;
 
 use hence_core::{Basis, Catalogue};
+use hence_workbook::planfile::PlanFile;
 
 use crate::Failure;
-use crate::args::{Against, Roles};
+use crate::args::{Against, OfSeveral, Roles};
 
 /// The schedules in force: the user's folder first, then the built-in ones.
 pub fn catalogue(folder: &Option<PathBuf>) -> Result<Catalogue, Failure> {
@@ -48,6 +49,20 @@ pub fn against(args: &Against, catalogue: &Catalogue) -> Result<Vec<String>, Fai
 pub fn roles(args: &Roles) -> Result<Vec<(String, String)>, Failure> {
     let shape = "ROLE=RANGE, as in years=\"Sheet1!C4:Z4\"";
     args.roles.iter().map(|text| pair(text, "--role", shape)).collect()
+}
+
+/// The plan that `--plan` names, for all of its appraisals or for the one that is wanted.
+pub fn plan(args: &Roles, of: Option<&OfSeveral>) -> Result<Option<PlanFile>, Failure> {
+    let Some(path) = &args.plan else { return Ok(None) };
+    let plan = PlanFile::open(path).map_err(|error| {
+        let lines = error.problems().iter().map(|problem| {
+            let place = problem.place.line.map(|line| format!(" line {line}")).unwrap_or_default();
+            let hint = problem.hint.as_ref().map(|hint| format!("\nTry: {hint}")).unwrap_or_default();
+            format!("{}{place}: {} ({}){hint}", path.display(), problem.message, problem.code)
+        });
+        Failure::Message(lines.collect::<Vec<_>>().join("\n"))
+    })?;
+    Ok(Some(plan.only(of.and_then(|of| of.appraisal.clone()))))
 }
 
 /// `A=B` in two.

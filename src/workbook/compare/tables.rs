@@ -20,7 +20,7 @@ const LAST: u32 = 6;
 pub fn book(package: &Package, comparison: &Comparison) -> Result<Vec<u8>> {
     let mut sheets = vec![sides(package, comparison), switching(comparison)];
     sheets.extend(comparison.map.as_ref().map(|map| letters(comparison, map)));
-    writer::workbook(&sheets)
+    writer::workbook(&sheets, &[])
 }
 
 /// Every so many points of a map, across and up, stand on its sheet.

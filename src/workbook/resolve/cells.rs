@@ -84,6 +84,9 @@ pub(super) fn numbers(context: &mut Context, grid: &Grid, called: &str) -> Numbe
 
 /// The one cell of a role that takes one, or nothing after a report. What it states is kept for the audit.
 pub(super) fn single(context: &mut Context, named: &Named) -> Option<ReadCell> {
+    if let Some(value) = &named.stated {
+        return Some(ReadCell { value: value.clone(), ..ReadCell::default() });
+    }
     if named.at.range.first != named.at.range.last {
         context.report(
             Problem::error(
