@@ -144,6 +144,9 @@ pub struct Fill {
     /// Change the basis from OLD to NEW; a workbook on another basis is refused
     #[arg(long, value_name = "OLD=NEW", conflicts_with = "basis")]
     pub replace: Option<String>,
+    /// Have LibreOffice compute what the fill leaves without a result, so that previewers and scripts see numbers
+    #[arg(long)]
+    pub settle: bool,
     /// Value at this base (a year, a financial year or a date), and write it into the base cell
     #[arg(long, value_name = "YEAR")]
     pub base: Option<String>,

@@ -21,6 +21,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     let request = FillRequest {
         basis: args.basis.clone(),
         base: args.base.clone(),
+        settle: args.settle,
         prices: args.prices.clone(),
         replace: args.replace.as_deref().map(|text| super::pair(text, "--replace", "OLD=NEW")).transpose()?,
         roles: super::roles(&args.roles)?,

@@ -20,6 +20,7 @@ const BRIDGE: &str = "Bridge";
 const MOVERS: &str = "Largest movers";
 const FAILURES: &str = "Failures";
 const WARNINGS: &str = "Warnings";
+const AWAITING: &str = "Awaiting recalculation";
 
 /// The summary workbook's bytes: the same records and place give the same bytes.
 ///
@@ -47,7 +48,28 @@ pub fn write(records: &[Record], place: &Path) -> Result<Vec<u8>> {
         read,
         Severity::Warning,
     ));
+    sheets.extend(awaiting(records));
     writer::workbook(&sheets, &[])
+}
+
+/// Formulas that show nothing until a spreadsheet program opens the output; no sheet where there are none.
+fn awaiting(records: &[Record]) -> Option<Sheet> {
+    let mut sheet = Sheet::new(AWAITING);
+    sheet.columns(0, 0, 44.0);
+    sheet.columns(1, 1, 100.0);
+    sheet.text(0, 0, Style::Title, "Formulas that await recalculation");
+    let note = "They rest on what was filled. A spreadsheet program computes them when it opens the output; previewers and \
+                scripts find no value there, and hence takes none for it. With --settle, LibreOffice computes them at once.";
+    sheet.paragraph(1, 0, 1, Style::Wrapped, note);
+    sheet.text(3, 0, Style::Heading, "Workbook");
+    sheet.text(3, 1, Style::Heading, "Cells");
+    let mut row = 3;
+    for record in records.iter().filter(|record| !record.report.awaiting.is_empty()) {
+        row += 1;
+        sheet.paragraph(row, 0, 0, Style::Wrapped, &record.input);
+        sheet.paragraph(row, 1, 1, Style::Wrapped, record.report.awaiting.join("; "));
+    }
+    (row > 3).then_some(sheet)
 }
 
 fn summary(records: &[Record]) -> Sheet {
