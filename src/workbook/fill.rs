@@ -25,7 +25,7 @@ use crate::references::{Cell, SheetRange};
 use crate::report::{Report, option_reports};
 use crate::resolve::{Options, resolve};
 use crate::sheets::{AuditInput, Meta, SheetNames, VERDICT_AGREES, build};
-use crate::shelf::{Record, prepare, record_part, sealed, sha256};
+use crate::shelf::{Record, output_is_input, prepare, record_part, sealed, sha256};
 use crate::stale;
 use crate::valuation::{from_core, value};
 use crate::verify::{Expected, verify};
@@ -91,10 +91,7 @@ pub fn fill_file(
 ) -> Result<Report> {
     let package = Package::open(input)?;
     if same_file(input, output) {
-        let message = format!("the output {} is the input, which is never written", output.display());
-        return Err(Problem::error("output-is-input", Place::default(), message)
-            .hint("give --out another name")
-            .into());
+        return Err(output_is_input(output));
     }
     may_write(output, force)?;
     let filled = fill(&package, request, catalogue)?;
