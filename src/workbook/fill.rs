@@ -20,12 +20,12 @@ use crate::patch::{Cached, CellWrite, patch_sheet};
 use crate::plan::Stale;
 use crate::planfile::{Part, PlanFile};
 use crate::preflight::preflight;
-use crate::problem::{Place, Problem, Result, WorkbookError};
+use crate::problem::{Problem, Result, WorkbookError};
 use crate::references::{Cell, SheetRange};
 use crate::report::Report;
 use crate::settle;
 use crate::sheets::{self, Composed, Meta, VERDICT_AGREES};
-use crate::shelf::{Record, prepare, record_part, sealed};
+use crate::shelf::{Record, output_is_input, prepare, record_part, sealed};
 use crate::stale;
 use crate::verify::{Expected, verify};
 
@@ -104,10 +104,7 @@ pub fn fill_file(
 ) -> Result<Report> {
     let package = Package::open(input)?;
     if same_file(input, output) {
-        let message = format!("the output {} is the input, which is never written", output.display());
-        return Err(Problem::error("output-is-input", Place::default(), message)
-            .hint("give --out another name")
-            .into());
+        return Err(output_is_input(output));
     }
     may_write(output, force)?;
     let filled = fill(&package, request, catalogue)?;

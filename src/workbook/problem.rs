@@ -144,7 +144,8 @@ pub struct WorkbookError {
 }
 
 /// Codes of problems that are about files and places, not about what a workbook holds.
-const FILE_CODES: [&str; 4] = ["cannot-read", "cannot-write", "output-exists", "output-is-input"];
+const FILE_CODES: [&str; 5] =
+    ["cannot-read", "cannot-write", "output-changed", "output-exists", "output-is-input"];
 
 /// The result of a fallible function of this crate.
 pub type Result<T> = std::result::Result<T, WorkbookError>;

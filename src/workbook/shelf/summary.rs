@@ -4,6 +4,8 @@ use std::path::Path;
 
 use hence_core::CAUTION;
 
+use crate::model::Workbook;
+use crate::package::Package;
 use crate::problem::{Problem, Result, Severity};
 use crate::report::{OptionReport, Status};
 use crate::writer::{self, Sheet, Style};
@@ -70,6 +72,15 @@ fn awaiting(records: &[Record]) -> Option<Sheet> {
         sheet.paragraph(row, 1, 1, Style::Wrapped, record.report.awaiting.join("; "));
     }
     (row > 3).then_some(sheet)
+}
+
+/// Whether a file is such a summary.
+pub fn is_one(path: &Path) -> bool {
+    let Ok(package) = Package::open(path) else { return false };
+    Workbook::read(&package).is_ok_and(|book| {
+        let names: Vec<&str> = book.sheets.iter().map(|sheet| sheet.name.as_str()).collect();
+        names.starts_with(&[SUMMARY, BRIDGE]) && names.contains(&FAILURES) && names.contains(&WARNINGS)
+    })
 }
 
 fn summary(records: &[Record]) -> Sheet {
