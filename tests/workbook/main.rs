@@ -31,6 +31,7 @@ mod sheets;
 mod small;
 mod stale;
 mod stream_basis;
+mod structure;
 mod suggest;
 mod tools;
 mod verify;
