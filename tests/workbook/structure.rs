@@ -1,5 +1,6 @@
 //! Mistakes in how a workbook is put together, each made by hand in a clean plan.
 
+mod clean;
 mod plan;
 
 use hence_workbook::findings::Finding;
