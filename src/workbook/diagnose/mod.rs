@@ -1,6 +1,28 @@
 //! What kind of mistake a workbook's numbers and formulas show, each kind in a module of its own.
+//!
+//! One mistake gives one finding. What follows from it, by formula or because the workbook's own numbers give it, is
+//! folded into it; a cell that differs for no reason that is known is a finding `differs`.
 
+mod consequences;
+mod differs;
 pub mod effect;
-pub mod seen;
+mod factors;
+mod reach;
+mod seen;
 
 pub use seen::{Compared, Seen, Standing};
+
+use crate::findings::Finding;
+use crate::problem::Result;
+use crate::references::SheetRange;
+
+/// Every mistake of a workbook.
+///
+/// **Errors**: those of reading its formulas.
+pub fn findings(seen: &Seen) -> Result<Vec<Finding>> {
+    let mut findings: Vec<Finding> = Vec::new();
+    let reach = reach::of(seen, &findings)?;
+    findings.extend(factors::findings(seen, |at: &SheetRange| reach.holds(at)));
+    differs::add(seen, &mut findings)?;
+    Ok(findings)
+}
