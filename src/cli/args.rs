@@ -123,9 +123,9 @@ pub enum WriteWhat {
 
 #[derive(Debug, Args)]
 pub struct Check {
-    /// The workbook; - reads it from standard input
-    #[arg(value_name = "BOOK")]
-    pub book: PathBuf,
+    /// Workbooks, and folders of them; - reads one from standard input
+    #[arg(value_name = "BOOK", required = true)]
+    pub books: Vec<PathBuf>,
     /// Give a role to cells without a defined name
     #[arg(long = "role", value_name = "ROLE=RANGE")]
     pub roles: Vec<String>,

@@ -1,9 +1,10 @@
-//! What a workbook holds in its targets against what its declared basis gives.
+//! What a workbook holds in its targets against what its declared basis gives, and what kind of mistake that shows.
 
 use hence_core::Catalogue;
 
 use crate::appraisal::Held;
-use crate::diagnose::{Compared, Seen, Standing};
+use crate::diagnose::{self, Compared, Seen, Standing};
+use crate::findings::Finding;
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::patch::Cached;
@@ -35,6 +36,8 @@ pub struct CheckReport {
     pub agree: usize,
     /// Every cell that does not.
     pub differences: Vec<Difference>,
+    /// The mistakes behind them, and others; what follows from one is not listed again.
+    pub findings: Vec<Finding>,
     /// Blank targets.
     pub not_filled: Vec<Place>,
     /// Warnings, and cells that could not be compared.
@@ -42,9 +45,9 @@ pub struct CheckReport {
 }
 
 impl CheckReport {
-    /// Whether all filled cells agree.
+    /// Whether nothing is wrong.
     pub fn agrees(&self) -> bool {
-        self.differences.is_empty() && self.problems.iter().all(|p| p.severity != Severity::Error)
+        self.findings.is_empty() && self.problems.iter().all(|p| p.severity != Severity::Error)
     }
 
     /// For the report.
@@ -60,7 +63,7 @@ impl CheckReport {
 pub fn check(package: &Package, roles: &[(String, String)], catalogue: &Catalogue) -> Result<CheckReport> {
     let book = Workbook::read(package)?;
     let seen = Seen::look(package, &book, roles, catalogue)?;
-    Ok(report(&seen))
+    Ok(CheckReport { findings: diagnose::findings(&seen)?, ..report(&seen) })
 }
 
 /// The comparison cell by cell.
@@ -68,6 +71,7 @@ fn report(seen: &Seen) -> CheckReport {
     let mut report = CheckReport {
         agree: 0,
         differences: Vec::new(),
+        findings: Vec::new(),
         not_filled: Vec::new(),
         problems: seen.problems.clone(),
     };

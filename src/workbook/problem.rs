@@ -38,6 +38,12 @@ impl Place {
         Place { sheet: None, range: None, name: Some(name.to_owned()) }
     }
 
+    /// Its cells without the name they go by: `Sheet1!B2`, for programs.
+    pub fn cells_words(&self) -> String {
+        let name = if self.sheet.is_some() { None } else { self.name.clone() };
+        Place { name, ..self.clone() }.to_string()
+    }
+
     /// Adds the defined name or heading in brackets.
     #[must_use]
     pub fn called(mut self, name: &str) -> Self {

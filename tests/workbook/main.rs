@@ -7,6 +7,7 @@ mod corpus;
 mod draws;
 mod files;
 mod fill;
+mod findings;
 mod formulas;
 mod graft;
 mod hostile;

@@ -1,12 +1,19 @@
 //! What kind of mistake a workbook's numbers and formulas show, each kind in a module of its own.
+//!
+//! One mistake gives one finding. What follows from it, by formula or because the workbook's own numbers give it, is
+//! folded into it; a cell that differs for no reason that is known is a finding `differs`.
 
 mod calc;
 mod cells;
+mod consequences;
+mod differs;
 pub mod effect;
 mod expr;
+mod factors;
 mod lines;
+mod reach;
 mod rows;
-pub mod seen;
+mod seen;
 mod signs;
 pub mod structure;
 mod sums;
@@ -14,3 +21,18 @@ mod totals;
 mod units;
 
 pub use seen::{Compared, Seen, Standing};
+
+use crate::findings::Finding;
+use crate::problem::Result;
+use crate::references::SheetRange;
+
+/// Every mistake of a workbook.
+///
+/// **Errors**: those of reading its formulas.
+pub fn findings(seen: &Seen) -> Result<Vec<Finding>> {
+    let mut findings = structure::findings(seen)?;
+    let reach = reach::of(seen, &findings)?;
+    findings.extend(factors::findings(seen, |at: &SheetRange| reach.holds(at)));
+    differs::add(seen, &mut findings)?;
+    Ok(findings)
+}

@@ -87,12 +87,16 @@ fn read(look: &Look, compared: &Compared, target: &Target, held: f64) -> Option<
     let own = choice.targets.iter().find(|t| t.role == TargetRole::Factor);
     let own: Option<Vec<f64>> = own.and_then(|t| t.held.iter().map(Held::number).collect());
     let tolerance = compared.tolerance.max(rounding(held));
-    for factors in [None, own] {
-        let totals = Totals::new(look, c, target, factors.as_deref())?;
+    let mut bases = vec![Totals::new(look, c, target, None)?];
+    bases.extend(own.and_then(|own| Totals::new(look, c, target, Some(&own))));
+    let right =
+        |totals: &Totals| (held - totals.whole).abs() <= CLEAR * tolerance.max(1e-9 * totals.whole.abs());
+    // What follows from the factors beside it is right for them.
+    if bases.iter().any(right) {
+        return None;
+    }
+    for totals in bases {
         let tolerance = tolerance.max(1e-9 * totals.whole.abs());
-        if (held - totals.whole).abs() <= CLEAR * tolerance {
-            continue;
-        }
         let readings = totals.readings(look, c);
         let tells = |x: f64| x.abs() > CLEAR * tolerance;
         let fits = |reading: &&Reading| tells(reading.value) && (reading.value - held).abs() <= tolerance;
