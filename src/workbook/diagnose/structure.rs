@@ -8,7 +8,7 @@ use super::cells::Cells;
 use super::effect::Effect;
 use super::expr::At;
 use super::lines::{Line, lines};
-use super::{rows, signs, sums, totals, units};
+use super::{rows, signs, sums, totals, units, years};
 use crate::appraisal::{Choice, Held, Target, TargetRole};
 use crate::findings::Finding;
 use crate::problem::Result;
@@ -18,7 +18,8 @@ use crate::problem::Result;
 /// **Errors**: those of reading cells.
 pub fn findings(seen: &Seen) -> Result<Vec<Finding>> {
     let look = Look::new(seen)?;
-    let mut found = rows::findings(&look);
+    let mut found = years::findings(&look);
+    found.extend(rows::findings(&look));
     found.extend(totals::findings(&look));
     found.extend(sums::findings(&look, &found));
     found.extend(signs::findings(&look));
