@@ -22,7 +22,8 @@ use crate::references::SheetRange;
 pub fn findings(seen: &Seen) -> Result<Vec<Finding>> {
     let mut findings: Vec<Finding> = Vec::new();
     let reach = reach::of(seen, &findings)?;
-    findings.extend(factors::findings(seen, |at: &SheetRange| reach.holds(at)));
-    differs::add(seen, &mut findings)?;
+    let mut rows = factors::rows(seen);
+    findings.extend(factors::findings(seen, &mut rows, |at: &SheetRange| reach.holds(at)));
+    differs::add(seen, &rows, &mut findings)?;
     Ok(findings)
 }
