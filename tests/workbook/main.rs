@@ -32,6 +32,7 @@ mod sheets;
 mod small;
 mod stale;
 mod stream_basis;
+mod structure;
 mod suggest;
 mod tools;
 mod verify;

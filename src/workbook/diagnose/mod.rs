@@ -3,12 +3,22 @@
 //! One mistake gives one finding. What follows from it, by formula or because the workbook's own numbers give it, is
 //! folded into it; a cell that differs for no reason that is known is a finding `differs`.
 
+mod calc;
+mod cells;
 mod consequences;
 mod differs;
 pub mod effect;
+mod expr;
 mod factors;
+mod lines;
 mod reach;
+mod rows;
 mod seen;
+mod signs;
+pub mod structure;
+mod sums;
+mod totals;
+mod units;
 
 pub use seen::{Compared, Seen, Standing};
 
@@ -20,7 +30,7 @@ use crate::references::SheetRange;
 ///
 /// **Errors**: those of reading its formulas.
 pub fn findings(seen: &Seen) -> Result<Vec<Finding>> {
-    let mut findings: Vec<Finding> = Vec::new();
+    let mut findings = structure::findings(seen)?;
     let reach = reach::of(seen, &findings)?;
     let mut rows = factors::rows(seen);
     findings.extend(factors::findings(seen, &mut rows, |at: &SheetRange| reach.holds(at)));
