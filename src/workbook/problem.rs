@@ -2,7 +2,7 @@
 
 use std::fmt;
 
-use crate::references::{Range, quote_sheet};
+use crate::references::{Range, SheetRange, quote_sheet};
 
 /// How bad a problem is.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, serde::Serialize)]
@@ -36,6 +36,12 @@ impl Place {
     /// A defined name, where it has no cells to point at.
     pub fn name(name: &str) -> Self {
         Place { sheet: None, range: None, name: Some(name.to_owned()) }
+    }
+
+    /// Whether the first of some cells is one of its.
+    pub(crate) fn holds(&self, at: &SheetRange) -> bool {
+        self.sheet.as_ref() == Some(&at.sheet)
+            && self.range.is_some_and(|range| range.contains(at.range.first))
     }
 
     /// Its cells without the name they go by: `Sheet1!B2`, for programs.

@@ -3,7 +3,7 @@
 mod plan;
 
 use hence_workbook::findings::Kind;
-use plan::{Plan, Shows, UK, banded, checked, codes, flat, rounded, show, uk};
+use plan::{Plan, Shows, UK, banded, codes, flat, rounded, show, uk};
 
 #[track_caller]
 fn close(found: f64, expected: f64) {
@@ -238,7 +238,105 @@ fn a_total_of_wrong_present_values_is_no_mistake_of_its_own() {
 
 #[test]
 fn blank_and_waiting_cells_are_no_zeros() {
-    let plan = Plan::new(UK, 40, uk);
-    let small = plan.small();
-    assert_eq!(codes(&checked(&small)), [""; 0]);
+    let plan = Plan::new(UK, 40, flat(0.035))
+        .with("D50: =1/1.035^40>\nE50: =B50*D50>\nF50: =C50*D50>\nB4: =F50>", "");
+    let report = plan.checked();
+    // Year 40 awaits recalculation; years 31 to 39 show the mistake. Three totals have results, the fourth has none.
+    assert_eq!(codes(&report), ["flat-for-bands"]);
+    assert_eq!(report.problems.iter().filter(|p| p.code == "awaits-recalculation").count(), 4);
+    let blank: String = (0..=40).map(|i| format!("D{0}: {{3}}\n", 10 + i)).collect();
+    assert_eq!(Plan::new(UK, 40, uk).with(&blank, "").codes(), [""; 0]);
+}
+
+#[test]
+fn a_net_present_value_alone_says_what_it_was_made_with() {
+    let npv =
+        |basis: &str, years, factor: &dyn Fn(f64) -> f64| Plan::new(basis, years, factor).shows(Shows::Npv);
+    let edge = |t: f64| banded(&[(35.0, 0.035), (75.0, 0.03), (125.0, 0.025)], t);
+    let rate = |t: f64| -> f64 {
+        if t <= 30.0 {
+            0.035
+        } else if t <= 75.0 {
+            0.03
+        } else {
+            0.025
+        }
+    };
+    for (kind, plan) in [
+        (Kind::FlatForBands, npv(UK, 100, &flat(0.035))),
+        (Kind::OffByPeriod, npv(UK, 100, &|t| uk(t + 1.0))),
+        (Kind::OffByPeriod, npv("5%", 40, &|t| flat(0.05)(t - 0.5))),
+        (Kind::ContinuousForYearly, npv("5%", 40, &|t| (-0.05 * t).exp())),
+        (Kind::BandEdge, npv(UK, 100, &edge)),
+        (Kind::WholeHorizonForForward, npv(UK, 100, &|t| (1.0 + rate(t)).powf(-t))),
+        (Kind::RoundedFactors, npv(UK, 100, &|t| rounded(uk(t), 4))),
+        (Kind::NominalOnReal, npv(UK, 100, &|t| uk(t) * 1.025f64.powf(-t))),
+    ] {
+        let finding = plan.only(kind);
+        let right: &dyn Fn(f64) -> f64 = if plan.basis == UK { &uk } else { &flat(0.05) };
+        close(finding.effect_on_npv.unwrap(), added(&plan, right));
+        assert_eq!(finding.place.to_string(), "Plan!B4 [hence_npv]");
+        assert!(finding.confidence > 0.5, "{}", show(&finding));
+    }
+    // Costs as declared, benefits half a year later.
+    let plan = npv(UK, 100, &uk);
+    let mixed: f64 =
+        (1..=100).map(|i| f64::from(i)).map(|i| (40.0 + 0.25 * i) * uk(i + 0.5) - 20.0 * uk(i)).sum();
+    plan.with(&format!("B4: {}", mixed - 1000.0), "").only(Kind::MixedTiming);
+    // A number that nothing gives.
+    let finding = npv(UK, 100, &uk).with("B4: 123.456", "").only(Kind::Differs);
+    assert!(finding.effect_on_npv.is_some());
+}
+
+#[test]
+fn the_workbooks_own_yearly_rates() {
+    let rates = |rate: &dyn Fn(usize) -> f64, years: usize| -> String {
+        (0..=years).map(|i| format!("G{}: {}\n", 10 + i, rate(i))).collect()
+    };
+    let declared = |i: usize| {
+        if i <= 30 {
+            0.035
+        } else if i <= 75 {
+            0.03
+        } else {
+            0.025
+        }
+    };
+    let names = "hence_rates G10:G110";
+    assert_eq!(Plan::new(UK, 100, uk).with(&rates(&declared, 100), names).codes(), [""; 0]);
+    // Factors made with wrong rates have no mistake of their own.
+    let plan = Plan::new(UK, 100, flat(0.035)).with(&rates(&|_| 0.035, 100), names);
+    let finding = plan.only(Kind::FlatForBands);
+    assert_eq!(finding.place.to_string(), "Plan!G10:G110 [hence_rates]");
+    close(finding.effect_on_npv.unwrap(), added(&plan, uk));
+    let late = |i: usize| if i <= 33 { 0.035 } else { declared(i) };
+    let edge = |t: f64| banded(&[(33.0, 0.035), (75.0, 0.03), (125.0, 0.025)], t);
+    Plan::new(UK, 100, edge).with(&rates(&late, 100), names).only(Kind::BandEdge);
+    let nominal = |i: usize| (1.0 + declared(i)) * 1.02 - 1.0;
+    Plan::new(UK, 100, |t| uk(t) * 1.02f64.powf(-t))
+        .with(&rates(&nominal, 100), names)
+        .only(Kind::NominalOnReal);
+    let slip = |i: usize| if i == 12 { 0.35 } else { declared(i) };
+    let plan = Plan::new(UK, 100, |t| uk(t) * if t >= 12.0 { 1.035 / 1.35 } else { 1.0 });
+    let finding = plan.with(&rates(&slip, 100), names).only(Kind::Differs);
+    assert_eq!(finding.place.to_string(), "Plan!G22 [hence_rates]");
+    assert_eq!(finding.found, "35% in 2038");
+}
+
+#[test]
+fn a_row_of_factors_without_a_name() {
+    let row = |factor: &dyn Fn(f64) -> f64| -> String {
+        (0..=60).map(|i| format!("G{}: {}\n", 10 + i, factor(f64::from(i)))).collect()
+    };
+    // The totals were made with it.
+    for shows in [Shows::Present, Shows::Npv] {
+        let plan = Plan::new(UK, 60, flat(0.035)).shows(shows).with(&row(&flat(0.035)), "");
+        let finding = plan.only(Kind::FlatForBands);
+        assert_eq!(finding.place.cells_words(), "Plan!G10:G70");
+        close(finding.effect_on_npv.unwrap(), added(&plan, uk));
+    }
+    // They were not: it is there for comparison.
+    for shows in [Shows::Present, Shows::Npv] {
+        assert_eq!(Plan::new(UK, 60, uk).shows(shows).with(&row(&flat(0.07)), "").codes(), [""; 0]);
+    }
 }

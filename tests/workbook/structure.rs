@@ -54,11 +54,11 @@ fn a_typed_number_in_a_row_of_formulas() {
     // A flow: what is typed moves the flows after it, too, as they count on from it.
     let mut plan = Plan::clean();
     plan.put(at(7, 5), "170".into());
-    let finding = only(&plan, "hard-coded", "Plan!G7");
+    let finding = only(&plan, "hard-coded", "Plan!G7 [hence_cost_running]");
     let moved: f64 = (5..YEARS).map(|i| 1.01f64.powi(i as i32 - 5) * factor(i)).sum();
     close(finding.effect_on_npv, -(170.0 - running(5)) * moved);
     // The first and the last of a row of factors.
-    for (i, cell) in [(0, "Plan!B14"), (YEARS - 1, "Plan!U14")] {
+    for (i, cell) in [(0, "Plan!B14 [hence_factor]"), (YEARS - 1, "Plan!U14 [hence_factor]")] {
         let mut plan = Plan::clean();
         plan.put(at(14, i), (factor(i) + 0.01).to_string());
         only(&plan, "hard-coded", cell);

@@ -2,8 +2,9 @@
 
 use hence_core::{dot, sum};
 
+use super::factors::Series;
 use super::{Compared, Seen, Standing};
-use crate::appraisal::{Held, Target, TargetRole};
+use crate::appraisal::{Held, TargetRole};
 use crate::formulas::find;
 use crate::tolerance::RELATIVE;
 use crate::valuation::side;
@@ -13,6 +14,8 @@ pub struct Consequences<'s, 'a> {
     seen: &'s Seen<'a>,
     /// By option and stream.
     factors: Vec<Vec<Vec<f64>>>,
+    /// The factors that yearly rates make, with the options that have these rates.
+    made: Vec<Series>,
 }
 
 /// Where the present value of a stream is taken from.
@@ -29,29 +32,41 @@ enum From {
 const SOURCES: [From; 3] = [From::Factors, From::Years, From::Totals];
 
 impl<'s, 'a> Consequences<'s, 'a> {
-    /// Of a workbook.
-    pub fn of(seen: &'s Seen<'a>) -> Self {
+    /// Of a workbook that uses the factors of these rows, a later one before an earlier.
+    pub fn of(seen: &'s Seen<'a>, rows: &[Series]) -> Self {
         let of_stream = |c: usize, s: usize| {
-            let (choice, outcome) = (&seen.appraisal.choices[c], &seen.outcomes[c]);
+            let outcome = &seen.outcomes[c];
             let own = outcome.streams[s].own.is_some();
-            let theirs = |target: &&Target| match &target.role {
-                TargetRole::StreamFactor(name) => find(choice, name) == Some(s),
-                TargetRole::Factor => !own,
-                _ => false,
-            };
             let mut factors = outcome.factors_of(s).to_vec();
-            // The stream's own row counts last, and so beats its option's.
-            let mut rows: Vec<&Target> = choice.targets.iter().filter(theirs).collect();
-            rows.sort_by_key(|target| target.role != TargetRole::Factor);
             for row in rows {
-                for (factor, held) in factors.iter_mut().zip(&row.held) {
-                    *factor = held.number().unwrap_or(*factor);
+                let takes = |&(choice, stream): &(usize, Option<usize>)| {
+                    choice == c && stream.map_or(!own, |stream| stream == s)
+                };
+                if row.users.iter().any(takes) {
+                    row.points.iter().for_each(|p| factors[p.index] = p.found);
                 }
             }
             factors
         };
         let of_choice = |c: usize| (0..seen.outcomes[c].streams.len()).map(|s| of_stream(c, s)).collect();
-        Consequences { seen, factors: (0..seen.outcomes.len()).map(of_choice).collect() }
+        let made = rows.iter().filter(|row| row.is_made_of_rates()).cloned().collect();
+        Consequences { seen, factors: (0..seen.outcomes.len()).map(of_choice).collect(), made }
+    }
+
+    /// The totals of present values that an option shows.
+    pub fn totals(&self, choice: usize) -> impl Iterator<Item = &'s Compared> {
+        let seen = self.seen;
+        seen.compared.iter().filter(move |cell| {
+            let role = &seen.target(cell).role;
+            let total = matches!(role, TargetRole::PvTotal(_) | TargetRole::PvCosts | TargetRole::PvBenefits);
+            cell.choice == choice && (total || *role == TargetRole::Npv) && seen.held(cell).number().is_some()
+        })
+    }
+
+    /// Whether every total of present values that an option shows, one at least, follows from the factors.
+    pub fn gives(&self, choice: usize) -> bool {
+        let mut totals = self.totals(choice).peekable();
+        totals.peek().is_some() && totals.all(|cell| self.follows(cell))
     }
 
     /// Whether a cell that differs holds what follows from other cells of the workbook.
@@ -95,11 +110,11 @@ impl<'s, 'a> Consequences<'s, 'a> {
                 let sums = SOURCES.map(|from| self.net(c, |s| self.pv(c, s, from)));
                 sums.into_iter().chain(self.net_row(c)).collect()
             }
-            TargetRole::PvCosts => SOURCES.map(|from| self.totals(c, from).1).to_vec(),
-            TargetRole::PvBenefits => SOURCES.map(|from| self.totals(c, from).0).to_vec(),
+            TargetRole::PvCosts => SOURCES.map(|from| self.sides(c, from).1).to_vec(),
+            TargetRole::PvBenefits => SOURCES.map(|from| self.sides(c, from).0).to_vec(),
             TargetRole::Npv => self.npvs(c),
             TargetRole::Ratio => {
-                let own = SOURCES.map(|from| self.totals(c, from));
+                let own = SOURCES.map(|from| self.sides(c, from));
                 own.into_iter().chain(self.held_totals(c)).map(|(benefits, costs)| benefits / costs).collect()
             }
             TargetRole::Annual => {
@@ -108,16 +123,18 @@ impl<'s, 'a> Consequences<'s, 'a> {
                 let annuities = [outcome.annuity, self.annuity(c)];
                 npvs.iter().flat_map(|npv| annuities.map(|annuity| npv / annuity)).collect()
             }
-            TargetRole::Factor
-            | TargetRole::StreamFactor(_)
-            | TargetRole::Rates
-            | TargetRole::Irr
-            | TargetRole::Payback => Vec::new(),
+            TargetRole::Factor => {
+                let rows = self.made.iter().filter(|row| row.users.iter().any(|user| user.0 == c));
+                rows.filter_map(|row| row.points.get(i)).map(|p| p.found).collect()
+            }
+            TargetRole::StreamFactor(_) | TargetRole::Rates | TargetRole::Irr | TargetRole::Payback => {
+                Vec::new()
+            }
         }
     }
 
     fn npvs(&self, c: usize) -> Vec<f64> {
-        let own = SOURCES.map(|from| self.totals(c, from));
+        let own = SOURCES.map(|from| self.sides(c, from));
         let all = own.into_iter().chain(self.held_totals(c)).map(|(benefits, costs)| benefits - costs);
         let net = |c: usize| self.one(c, &TargetRole::PvTotal(None)).or_else(|| self.net_row(c));
         let base = self.seen.appraisal.baseline;
@@ -126,7 +143,7 @@ impl<'s, 'a> Consequences<'s, 'a> {
     }
 
     /// PV of benefits and of costs, over the baseline where there is one.
-    fn totals(&self, c: usize, from: From) -> (f64, f64) {
+    fn sides(&self, c: usize, from: From) -> (f64, f64) {
         let absolute = |c: usize| {
             let part = |pick: fn((f64, f64)) -> f64| {
                 let streams = self.seen.appraisal.choices[c].streams.iter().enumerate();

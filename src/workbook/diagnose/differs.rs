@@ -1,6 +1,7 @@
 //! Cells that differ for no reason that is known.
 
 use super::consequences::Consequences;
+use super::factors::Series;
 use super::{Compared, Seen, Standing, reach};
 use crate::appraisal::TargetRole;
 use crate::findings::{Finding, Kind};
@@ -12,8 +13,8 @@ use crate::sheets::role_words;
 use crate::tolerance;
 
 /// Adds a finding for every range that differs and that no finding explains, from the factors to the totals.
-pub fn add(seen: &Seen, findings: &mut Vec<Finding>) -> Result<()> {
-    let consequences = Consequences::of(seen);
+pub fn add(seen: &Seen, rows: &[Series], findings: &mut Vec<Finding>) -> Result<()> {
+    let consequences = Consequences::of(seen, rows);
     let mut rest: Vec<&Compared> =
         seen.compared.iter().filter(|cell| cell.standing == Standing::Differs).collect();
     rest.sort_by_key(|cell| order(&seen.target(cell).role));

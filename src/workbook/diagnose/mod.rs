@@ -41,8 +41,9 @@ pub(crate) fn findings(
     let mut findings = known;
     findings.extend(structure::findings(seen)?);
     let reach = reach::of(seen, &findings)?;
-    findings.extend(factors::findings(seen, |at: &SheetRange| reach.holds(at)));
-    differs::add(seen, &mut findings)?;
+    let mut rows = factors::rows(seen);
+    findings.extend(factors::findings(seen, &mut rows, |at: &SheetRange| reach.holds(at)));
+    differs::add(seen, &rows, &mut findings)?;
     let later = findings.split_off(told);
     findings.extend(later.into_iter().filter(|finding| !repeats(finding)));
     Ok(findings)

@@ -2,7 +2,7 @@
 
 use std::rc::Rc;
 
-use hence_core::{Parts, PriceBasis, Where};
+use hence_core::{Curve, Parts, PriceBasis, Where};
 
 use super::law::{Bands, Law, When};
 use super::series::{Point, Series};
@@ -22,7 +22,7 @@ pub struct Known {
     /// The declared timing.
     pub declared: When,
     /// Curves of other schedules.
-    pub schedules: Vec<(String, Option<PriceBasis>, Rc<hence_core::Curve>)>,
+    pub schedules: Vec<(String, Option<PriceBasis>, Rc<Curve>)>,
     /// Whether the declared rates are real, as far as is said.
     pub real: bool,
 }
@@ -89,31 +89,44 @@ pub fn timings(known: &Known, far: bool) -> Vec<When> {
 
 /// Curves other than the declared one, by the kind of mistake, the likeliest first.
 pub fn laws(series: &Series, known: &Known, when: When) -> Vec<(Kind, Law)> {
-    let mut all = Vec::new();
-    if let Some(bands) = &known.forward
-        && !matches!(series.curve.parts(), Parts::Continuous { .. })
-    {
-        all.push((Kind::ContinuousForYearly, Law::Continuous(bands.clone())));
-    }
+    let mut all: Vec<(Kind, Law)> = continuous(&series.curve, known).into_iter().collect();
     if !known.flat {
         let rates = fitted_rates(series, when);
         let stated = known.forward.iter().chain(&known.horizon).flat_map(|bands| bands.rates.clone());
         all.extend(stated.chain(rates).map(|rate| (Kind::FlatForBands, Law::Flat(rate))));
     }
-    if let Some(bands) = known.forward.as_ref().filter(|bands| bands.several()) {
-        for (moved, later) in [(0.0, false), (0.0, true), (0.5, false), (-0.5, false), (1.0, false)] {
-            all.push((
-                Kind::WholeHorizonForForward,
-                Law::WholeHorizon { bands: bands.clone(), moved, later },
-            ));
-        }
-    }
+    all.extend(whole_horizon(known));
     all.extend(inflations(series, known, when).map(|i| {
         let law = Law::Inflated(Rc::clone(&series.curve), i);
         (Kind::NominalOnReal, law)
     }));
-    all.extend(moved_edges(series, known, when).map(|law| (Kind::BandEdge, law)));
+    all.extend(moved_edges(series, known, when).into_iter().map(|law| (Kind::BandEdge, law)));
     all
+}
+
+/// The declared yearly rates, compounded continuously.
+fn continuous(curve: &Curve, known: &Known) -> Option<(Kind, Law)> {
+    let yearly = !matches!(curve.parts(), Parts::Continuous { .. });
+    let bands = known.forward.clone().filter(|_| yearly)?;
+    Some((Kind::ContinuousForYearly, Law::Continuous(bands)))
+}
+
+/// The declared rates, each over the whole time; the band is looked up by the offset, or by the year near to it.
+fn whole_horizon(known: &Known) -> Vec<(Kind, Law)> {
+    let Some(bands) = known.forward.as_ref().filter(|bands| bands.several()) else { return Vec::new() };
+    let lookups = [(0.0, false), (0.0, true), (0.5, false), (-0.5, false), (1.0, false)];
+    let law = |(moved, later)| Law::WholeHorizon { bands: bands.clone(), moved, later };
+    lookups.into_iter().map(|lookup| (Kind::WholeHorizonForForward, law(lookup))).collect()
+}
+
+/// The curves of other schedules.
+fn schedules(known: &Known) -> Vec<(Kind, Law)> {
+    let of = |(id, prices, curve): &(String, Option<PriceBasis>, Rc<Curve>)| {
+        let nominal = known.real && *prices == Some(PriceBasis::Nominal);
+        let kind = if nominal { Kind::NominalOnReal } else { Kind::Differs };
+        (kind, Law::Schedule(id.clone(), Rc::clone(curve)))
+    };
+    known.schedules.iter().map(of).collect()
 }
 
 /// Curves that are no known mistake, but a basis of their own.
@@ -123,14 +136,27 @@ pub fn others(series: &Series, known: &Known, when: When) -> Vec<(Kind, Law)> {
         // A flat rate is told as such, whoever may have published it.
         all.extend(fitted_rates(series, when).into_iter().map(|rate| (Kind::Differs, Law::Flat(rate))));
     }
-    for (id, prices, curve) in &known.schedules {
-        let nominal = known.real && *prices == Some(PriceBasis::Nominal);
-        let kind = if nominal { Kind::NominalOnReal } else { Kind::Differs };
-        all.push((kind, Law::Schedule(id.clone(), Rc::clone(curve))));
-    }
+    all.extend(schedules(known));
     if let Some(bands) = &known.horizon {
         all.push((Kind::Differs, Law::Bands(bands.clone())));
     }
+    all
+}
+
+/// Curves other than the declared one of which nothing need be fitted. `last` is the offset of the last year.
+pub fn round_laws(curve: &Rc<Curve>, known: &Known, last: f64) -> Vec<(Kind, Law)> {
+    let mut all = Vec::new();
+    let bands = known.forward.iter().chain(&known.horizon);
+    all.extend(continuous(curve, known));
+    all.extend(whole_horizon(known));
+    let kind = if known.flat { Kind::Differs } else { Kind::FlatForBands };
+    let rates = bands.flat_map(|bands| bands.rates.clone());
+    let rates = rates.filter(|_| !known.flat).chain((0..=60).map(|quarters| f64::from(quarters) / 400.0));
+    let inflations = known.inflation.iter().copied().chain((1..=20).map(|halves| f64::from(halves) / 200.0));
+    all.extend(inflations.map(|i| (Kind::NominalOnReal, Law::Inflated(Rc::clone(curve), i))));
+    all.extend(rates.map(|rate| (kind, Law::Flat(rate))));
+    all.extend(shifted_edges(known, last).into_iter().map(|law| (Kind::BandEdge, law)));
+    all.extend(schedules(known));
     all
 }
 
@@ -184,37 +210,38 @@ fn inflations(series: &Series, known: &Known, when: When) -> impl Iterator<Item 
 
 /// The declared bands with edges in other years: one edge, all of them alike, or each where the yearly rate of the
 /// row changes.
-fn moved_edges(series: &Series, known: &Known, when: When) -> impl Iterator<Item = Law> {
-    let mut all = Vec::new();
+fn moved_edges(series: &Series, known: &Known, when: When) -> Vec<Law> {
     let last = series.points.last().map_or(0.0, |p| p.t);
-    let make = |bands: &Bands| match known.horizon.is_some() {
-        true => Law::WholeHorizon { bands: bands.clone(), moved: 0.0, later: false },
-        false => Law::Bands(bands.clone()),
+    let mut all = shifted_edges(known, last);
+    all.extend(known.forward.as_ref().and_then(|bands| stepped(series, bands, when)).map(Law::Bands));
+    all
+}
+
+/// The declared bands with one edge in another year, or with all of them as many years off.
+///
+/// An edge beyond the last year would leave its band unseen: that is another rate, not another edge.
+fn shifted_edges(known: &Known, last: f64) -> Vec<Law> {
+    let mut all = Vec::new();
+    let make = |bands: Bands| match known.horizon.is_some() {
+        true => Law::WholeHorizon { bands, moved: 0.0, later: false },
+        false => Law::Bands(bands),
     };
+    let half_years = |from: i32, to: i32| (from..to).map(|half| 0.5 * f64::from(half));
     for bands in known.forward.iter().chain(&known.horizon).filter(|bands| bands.several()) {
-        let halves = 2 * (last.min(1_000.0).ceil() as i32);
-        // An edge beyond the last year would leave its band unseen: that is another rate, not another edge.
-        for k in 0..bands.rates.len() - 1 {
-            let seen = k == 0 || bands.edges[k - 1] < last;
-            for half in 0..halves {
-                let edge = 0.5 * f64::from(half);
-                if seen && edge != bands.edges[k] && edge < last {
-                    let mut moved = bands.clone();
-                    moved.edges[k] = edge;
-                    all.push(make(&moved));
-                }
+        for k in (0..bands.rates.len() - 1).filter(|&k| k == 0 || bands.edges[k - 1] < last) {
+            let others = half_years(0, 2 * (last.min(1_000.0).ceil() as i32));
+            for edge in others.filter(|edge| *edge != bands.edges[k] && *edge < last) {
+                let mut moved = bands.clone();
+                moved.edges[k] = edge;
+                all.push(make(moved));
             }
         }
-        for half in -40..=40 {
-            let by = 0.5 * f64::from(half);
-            if by != 0.0 && bands.edges.first().is_some_and(|edge| edge + by < last) {
-                let edges = bands.edges.iter().map(|edge| edge + by).collect();
-                all.push(make(&Bands { edges, ..bands.clone() }));
-            }
+        for by in half_years(-40, 41).filter(|by| *by != 0.0 && bands.edges[0] + by < last) {
+            let edges = bands.edges.iter().map(|edge| edge + by).collect();
+            all.push(make(Bands { edges, ..bands.clone() }));
         }
     }
-    all.extend(known.forward.as_ref().and_then(|bands| stepped(series, bands, when)).map(Law::Bands));
-    all.into_iter()
+    all
 }
 
 /// The declared rates with edges where the yearly rate between neighbouring points changes.

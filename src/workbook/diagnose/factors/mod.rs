@@ -11,42 +11,79 @@
 mod candidates;
 mod law;
 mod mixed;
+mod rates;
 mod reading;
 mod search;
 mod series;
+mod totals;
+mod unnamed;
 mod words;
 
 use candidates::Known;
 use mixed::Mixed;
+use rates::{makes, rates_off, rates_rows};
 use reading::Reading;
 use search::{Found, Shown, search};
-use series::{Point, Series, Source, User, factor_rows, implied_rows, npvs_with};
+pub use series::Series;
+use series::{Point, Source, User, factor_rows, implied_rows, npvs_with};
+use totals::{Total, total};
+use unnamed::unnamed_rows;
 
-use crate::diagnose::Seen;
 use crate::diagnose::effect::Effect;
+use crate::diagnose::{Compared, Seen};
 use crate::findings::{Finding, Kind};
 use crate::plan::span;
 use crate::problem::Place;
 use crate::references::SheetRange;
 use crate::valuation::cell_of;
 
+/// Every row of factors that a workbook shows: those that its yearly rates would make, those of that role, and those
+/// that its results were made with.
+pub fn rows(seen: &Seen) -> Vec<Series> {
+    [rates_rows(seen), unnamed_rows(seen), factor_rows(seen)].concat()
+}
+
 /// What is wrong with the factors of a workbook; cells that `known` says are explained already are left out.
-pub fn findings(seen: &Seen, known: impl Fn(&SheetRange) -> bool) -> Vec<Finding> {
-    let rows = factor_rows(seen);
-    let implied = implied_rows(seen).into_iter().filter(|row| !follows(row, &rows));
-    let mut all: Vec<Series> = implied.collect();
-    all.splice(0..0, rows);
+///
+/// `rows` are the factors that the workbook shows; those that its totals alone tell of are added.
+pub fn findings(seen: &Seen, rows: &mut Vec<Series>, known: impl Fn(&SheetRange) -> bool) -> Vec<Finding> {
+    let mut findings = of_rows(seen, rows, &known);
+    for c in 0..seen.outcomes.len() {
+        let found = |cell: &Compared| {
+            findings.iter().any(|finding: &Finding| finding.place.holds(&cell.at)) || known(&cell.at)
+        };
+        if let Some(total) = total(seen, c, rows, found) {
+            findings.push(of_total(seen, &total));
+            rows.extend(total.rows);
+        }
+    }
+    findings
+}
+
+/// What the rows of factors show, and those that present values imply.
+fn of_rows(seen: &Seen, rows: &mut Vec<Series>, known: &impl Fn(&SheetRange) -> bool) -> Vec<Finding> {
+    let made = |row: &&Series| {
+        let rates = |other: &Series| {
+            other.source == Source::Rates && !rates_off(seen, &other.at).is_empty() && makes(other, row)
+        };
+        row.source == Source::Rates || !rows.iter().any(rates)
+    };
+    let mut all: Vec<Series> = rows.iter().filter(made).cloned().collect();
+    all.extend(implied_rows(seen).into_iter().filter(|row| !follows(row, rows)));
     for row in &mut all {
         let at = row.at.clone();
         row.points.retain(|p| !known(&cell_of(&at, p.index)));
     }
     let read = |row: &Series| {
         let known = Known::of(seen, row);
-        let shown = search(row, &known);
+        let shown = match row.source {
+            Source::Rates => of_rates(seen, row, &known),
+            _ => search(row, &known),
+        };
         (known, shown)
     };
     let shown: Vec<(Known, Shown)> = all.iter().map(read).collect();
-    let mut findings = Vec::new();
+    let (mut findings, mut whole) = (Vec::new(), Vec::new());
     let mut told = vec![false; all.len()];
     for i in 0..all.len() {
         if std::mem::replace(&mut told[i], true) {
@@ -71,10 +108,56 @@ pub fn findings(seen: &Seen, known: impl Fn(&SheetRange) -> bool) -> Vec<Finding
                 let right = |j: usize| same_option(row, &all[j]) && shown[j].1 == Shown::Declared;
                 let mixed = (0..all.len()).any(right);
                 findings.extend(of_reading(seen, &rows, known, found, mixed));
+                whole.extend(rows.iter().map(|row| completed(seen, row, &found.reading)));
             }
         }
     }
+    rows.extend(whole);
     findings
+}
+
+/// A row with the factors that its blank and waiting cells would have.
+fn completed(seen: &Seen, row: &Series, reading: &Reading) -> Series {
+    let outcome = &seen.outcomes[row.users[0].0];
+    let mut row = row.clone();
+    for (index, t) in outcome.offsets.iter().enumerate() {
+        let point = Point { index, t: *t, declared: outcome.factors[index], found: 0.0, slack: 0.0 };
+        if row.points.iter().all(|p| p.index != index)
+            && let Some(found) = reading.factor(&point)
+        {
+            row.points.push(Point { found, ..point });
+        }
+    }
+    row
+}
+
+/// What a row of yearly rates shows. A rate that is wrong makes every factor after it wrong: where no reading gives the
+/// factors, the rates themselves say how many are off.
+fn of_rates(seen: &Seen, row: &Series, known: &Known) -> Shown {
+    let off = rates_off(seen, &row.at);
+    if off.is_empty() {
+        return Shown::Declared;
+    }
+    match search(row, known) {
+        Shown::Reading(found) if found.reading.kind != Some(Kind::Differs) && found.fit.off.is_empty() => {
+            Shown::Reading(found)
+        }
+        _ if 2 * off.len() < row.points.len() => Shown::SomeOff(off),
+        shown @ Shown::Reading(_) => shown,
+        _ => Shown::Unknown,
+    }
+}
+
+/// A reading that gives the totals of an option.
+fn of_total(seen: &Seen, total: &Total) -> Finding {
+    let with: Vec<(&[User], &[Point])> =
+        total.rows.iter().map(|row| (&row.users[..], &row.points[..])).collect();
+    let effect = Effect::of(&seen.appraisal, &seen.npvs(), &npvs_with(seen, &with));
+    let target = seen.target(&total.cell);
+    let place = Place::cells(&total.cell.at.sheet, total.cell.at.range).called(&target.from);
+    let known = Known::of(seen, &total.rows[0]);
+    let said = words::of_total(seen, total, &known, effect.npv);
+    finding(total.kinds[0], place, said, effect, total.confidence)
 }
 
 /// Whether two rows of present values are of streams of one option.
@@ -87,7 +170,7 @@ fn follows(implied: &Series, rows: &[Series]) -> bool {
     let (choice, stream) = implied.users[0];
     let theirs =
         |row: &&Series| row.users.iter().any(|user| *user == (choice, stream) || *user == (choice, None));
-    let Some(row) = rows.iter().find(theirs) else { return false };
+    let Some(row) = rows.iter().rfind(theirs) else { return false };
     let shown = |index: usize| row.points.iter().find(|p| p.index == index);
     implied.points.iter().all(|p| {
         let factor = shown(p.index).map_or(p.declared, |p| p.found);
@@ -153,7 +236,11 @@ fn of_mixed(seen: &Seen, row: &Series, known: &Known, found: &Mixed) -> Finding 
 fn some_off(seen: &Seen, row: &Series, off: &[usize]) -> Finding {
     let cells: Vec<SheetRange> = off.iter().map(|&i| row.cell(row.points[i].index)).collect();
     let place = span(&cells).unwrap_or_else(|| place(&[row])).called(&row.called);
-    let points: Vec<Point> = off.iter().map(|&i| row.points[i].clone()).collect();
+    // A wrong rate moves every factor after it.
+    let points: Vec<Point> = match row.source {
+        Source::Rates => row.points.clone(),
+        _ => off.iter().map(|&i| row.points[i].clone()).collect(),
+    };
     let effect = Effect::of(&seen.appraisal, &seen.npvs(), &npvs_with(seen, &[(&row.users, &points)]));
     let share = (row.points.len() - off.len()) as f64 / row.points.len() as f64;
     finding(Kind::Differs, place, words::some_off(seen, row, off), effect, share)
@@ -164,7 +251,7 @@ fn unknown(seen: &Seen, row: &Series) -> Finding {
     let falls = row.points.windows(2).filter(|pair| pair[1].found <= pair[0].found).count();
     let near_one = row.points.first().is_some_and(|p| (0.5..=1.5).contains(&p.found));
     let like = near_one && 10 * falls >= 8 * row.points.len().saturating_sub(1);
-    let kind = if row.source == Source::Factors || like { Kind::NoKnownRate } else { Kind::Differs };
+    let kind = if row.source != Source::Present || like { Kind::NoKnownRate } else { Kind::Differs };
     // The more factors, the less likely that a reading was missed by chance.
     finding(kind, place(&[row]), words::unknown(seen, row), effect(seen, row), confidence(row, &[], 0))
 }

@@ -16,8 +16,12 @@ use crate::valuation::{cell_of, side};
 pub enum Source {
     /// Cells that hold factors.
     Factors,
+    /// Cells that hold yearly rates, by the factors that they would make.
+    Rates,
     /// Present values by year over the flows they came from.
     Present,
+    /// A reading that gives the totals.
+    Totals,
 }
 
 /// One factor that a workbook uses.
@@ -58,6 +62,11 @@ pub struct Series {
 }
 
 impl Series {
+    /// Whether it is what yearly rates would make.
+    pub fn is_made_of_rates(&self) -> bool {
+        self.source == Source::Rates
+    }
+
     /// The cell of a point.
     pub fn cell(&self, index: usize) -> SheetRange {
         cell_of(&self.at, index)

@@ -8,9 +8,12 @@ use super::mixed::Mixed;
 use super::reading::Rounding;
 use super::search::Found;
 use super::series::{Point, Series, Source};
+use super::totals::Total;
+use crate::appraisal::Held;
 use crate::clock::label_words;
 use crate::diagnose::Seen;
 use crate::findings::Kind;
+use crate::patch::Cached;
 use crate::tolerance;
 
 /// What a finding says.
@@ -124,14 +127,77 @@ pub fn of_mixed(seen: &Seen, row: &Series, found: &Mixed) -> Said {
     }
 }
 
+/// A reading that gives the totals.
+pub fn of_total(seen: &Seen, total: &Total, known: &Known, effect: Option<f64>) -> Said {
+    let (row, reading) = (&total.rows[0], &total.reading);
+    let what = match (total.kinds[0], total.benefits) {
+        (_, Some(benefits)) => format!(
+            "costs by {}, all else by {}",
+            timing(known.declared, reading.when),
+            timing(known.declared, benefits)
+        ),
+        (Kind::OffByPeriod, None) => timing(known.declared, reading.when),
+        (Kind::RoundedFactors, None) => {
+            format!("the declared factors {}", reading.rounding.map(rounding).unwrap_or_default())
+        }
+        _ => law(&reading.law, known),
+    };
+    let basis = basis(seen, row);
+    let totals =
+        if total.given == 1 { "the total".to_owned() } else { format!("all {} totals", total.given) };
+    let mut words = format!("{what} would give {totals}; the declared basis is {basis}");
+    if let (Kind::RoundedFactors, Some(effect)) = (total.kinds[0], effect) {
+        words.push_str(&format!("; that adds {} to the NPV", amount(effect)));
+    }
+    if let Held::Formula { text, .. } = seen.held(&total.cell) {
+        words.push_str(&format!("; the cell holds `={text}`"));
+    }
+    if !total.ties.is_empty() {
+        words.push_str(&format!("; {} would fit as well", codes(&total.ties)));
+    }
+    let expected = match &total.cell.expected {
+        Cached::Number(x) => x.to_string(),
+        _ => "no number".to_owned(),
+    };
+    let found = seen.held(&total.cell).number().map_or_else(String::new, |x| x.to_string());
+    Said { found: format!("{what}: {found}"), expected: format!("{basis}: {expected}"), words }
+}
+
 /// A few factors that are off.
 pub fn some_off(seen: &Seen, row: &Series, off: &[usize]) -> Said {
+    if row.source == Source::Rates {
+        return rates_off(seen, row, off);
+    }
     let first = &row.points[off[0]];
     let (off, n) = (off.len(), row.points.len());
     let are = if off == 1 { "is" } else { "are" };
     let words = format!("{off} of {n} {} {are} not as the rest of the row; no reason is known", noun(row));
     let exact = |factor: f64| format!("{factor} in {}", year(seen, row, first));
     Said { found: exact(first.found), expected: exact(first.declared), words }
+}
+
+/// A few yearly rates that are off.
+fn rates_off(seen: &Seen, row: &Series, off: &[usize]) -> Said {
+    let first = row.cell(off[0]);
+    let cell = seen.compared.iter().find(|cell| cell.at == first);
+    let found = cell.and_then(|cell| seen.held(cell).number());
+    let expected = cell.and_then(|cell| match cell.expected {
+        Cached::Number(x) => Some(x),
+        _ => None,
+    });
+    let shown = |x: Option<f64>| {
+        x.map_or_else(
+            || "no number".to_owned(),
+            |x| format!("{} in {}", rate(x), year(seen, row, &row.points[off[0]])),
+        )
+    };
+    let are = if off.len() == 1 { "is" } else { "are" };
+    let words = format!(
+        "{} of {} yearly rates {are} not as declared; no reason is known",
+        off.len(),
+        row.points.len()
+    );
+    Said { found: shown(found), expected: shown(expected), words }
 }
 
 /// A row that nothing gives.
@@ -167,6 +233,8 @@ pub fn unknown(seen: &Seen, row: &Series) -> Said {
 fn noun(row: &Series) -> &'static str {
     match row.source {
         Source::Factors => "factors",
+        Source::Rates => "factors that these rates make",
+        Source::Totals => "factors behind the totals",
         Source::Present => "factors (present values over flows)",
     }
 }
