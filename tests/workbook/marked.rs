@@ -6,10 +6,13 @@ use std::process::Command;
 
 use hence_core::Catalogue;
 use hence_workbook::check::{CheckReport, check};
+use hence_workbook::findings::{Finding, Kind};
 use hence_workbook::marked::mark;
 use hence_workbook::model::Workbook;
 use hence_workbook::package::{Changes, Package};
 use hence_workbook::patch::{CellWrite, patch_sheet};
+use hence_workbook::preflight::preflight;
+use hence_workbook::problem::Place;
 use hence_workbook::reading::{Sheets, Value};
 
 use crate::small::Small;
@@ -240,4 +243,61 @@ fn copies_are_valid_and_their_notes_are_read_by_others() {
         ]);
         assert_eq!(found, expected, "{}", String::from_utf8_lossy(&output.stderr));
     }
+}
+
+/// A report with a finding on the first cell of every sheet.
+fn everywhere(book: &Workbook) -> CheckReport {
+    let finding = |sheet: &hence_workbook::model::Sheet| Finding {
+        kind: Kind::HardCoded,
+        place: Place::cells(&sheet.name, "A1:B2".parse().unwrap()),
+        found: "1 & 2".to_owned(),
+        expected: "<3>".to_owned(),
+        effect_on_npv: None,
+        ranking: None,
+        confidence: 0.5,
+        words: "For the test.".to_owned(),
+    };
+    CheckReport {
+        agree: 0,
+        differences: Vec::new(),
+        findings: book.sheets.iter().map(finding).collect(),
+        not_filled: Vec::new(),
+        problems: Vec::new(),
+    }
+}
+
+#[test]
+fn real_workbooks_take_notes_on_every_sheet() {
+    let Some(corpus) = std::env::var_os("HENCE_CORPUS") else {
+        println!("HENCE_CORPUS is not set: no real workbook was tried");
+        return;
+    };
+    let folder = tempfile::tempdir().unwrap();
+    let mut files: Vec<_> = std::fs::read_dir(corpus).unwrap().map(|entry| entry.unwrap().path()).collect();
+    files.sort();
+    let (mut before, mut after) = (Vec::new(), Vec::new());
+    for file in files {
+        let Ok(package) = Package::open(&file) else { continue };
+        if package.graftable().is_err() || preflight(&package).is_err() {
+            continue;
+        }
+        let report = everywhere(&Workbook::read(&package).unwrap());
+        let once = mark(&package, &report).unwrap_or_else(|error| panic!("{}: {error}", file.display()));
+        let copy = Package::from_bytes(package.file_name(), once.clone()).unwrap();
+        let twice = mark(&copy, &report).unwrap_or_else(|error| panic!("{}, again: {error}", file.display()));
+        let again = Package::from_bytes(package.file_name(), twice).unwrap();
+        for name in copy.parts().filter(|name| name.contains("comments") || name.ends_with(".vml")) {
+            assert_eq!(copy.part(name).unwrap(), again.part(name).unwrap(), "{}: {name}", file.display());
+        }
+        let path = folder.path().join(package.file_name());
+        std::fs::write(&path, once).unwrap();
+        before.push(file);
+        after.push(path);
+    }
+    assert!(after.len() > 50, "{} workbooks were marked", after.len());
+    let Some(bad) = tools::invalid(&before) else { return };
+    let sound: Vec<_> =
+        before.iter().zip(&after).filter(|(b, _)| !bad.contains_key(*b)).map(|(_, a)| a.clone()).collect();
+    let bad = tools::invalid(&sound).unwrap();
+    assert!(bad.is_empty(), "{bad:#?}");
 }
