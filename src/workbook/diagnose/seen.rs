@@ -98,6 +98,11 @@ impl<'a> Seen<'a> {
         self.cells.borrow_mut().range(at).ok()
     }
 
+    /// Reads many ranges at once, for [`Seen::grid`] to find; what cannot be read is found missing there.
+    pub fn load(&self, ranges: &[SheetRange]) {
+        let _ = self.cells.borrow_mut().load(ranges);
+    }
+
     /// The target of a compared cell.
     pub fn target(&self, compared: &Compared) -> &Target {
         &self.appraisal.choices[compared.choice].targets[compared.target]
