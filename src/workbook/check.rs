@@ -58,12 +58,35 @@ impl CheckReport {
 
 /// Checks one workbook; nothing is written.
 ///
+/// Years and signs that keep it from being valued are findings, and are set right in memory so that the rest is checked, too.
+///
 /// # Errors
-/// Everything that keeps the workbook from being read and valued, each with its cell.
+/// Everything else that keeps the workbook from being read and valued, each with its cell.
 pub fn check(package: &Package, roles: &[(String, String)], catalogue: &Catalogue) -> Result<CheckReport> {
     let book = Workbook::read(package)?;
-    let seen = Seen::look(package, &book, roles, catalogue)?;
-    Ok(CheckReport { findings: diagnose::findings(&seen)?, ..report(&seen) })
+    let error = match Seen::look(package, &book, roles, catalogue) {
+        Ok(seen) => {
+            return Ok(CheckReport {
+                findings: diagnose::findings(&seen, Vec::new(), |_| false)?,
+                ..report(&seen)
+            });
+        }
+        Err(error) => error,
+    };
+    if let Some(mended) = diagnose::mend(package, &book, roles, error.problems())? {
+        let book = Workbook::read(&mended.package)?;
+        if let Ok(seen) = Seen::look(&mended.package, &book, roles, catalogue) {
+            let findings =
+                diagnose::findings(&seen, mended.findings(&seen), |finding| mended.repeats(finding))?;
+            return Ok(CheckReport { findings, ..report(&seen) });
+        }
+    }
+    let findings = diagnose::unvalued(error.problems());
+    if findings.is_empty() {
+        return Err(error);
+    }
+    let problems = error.problems().to_vec();
+    Ok(CheckReport { agree: 0, differences: Vec::new(), findings, not_filled: Vec::new(), problems })
 }
 
 /// The comparison cell by cell.

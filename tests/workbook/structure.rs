@@ -10,7 +10,17 @@ use plan::{Plan, YEARS, at, factor, fish, pv_benefits, pv_costs, row, running, w
 /// The one finding, which has to be of this kind and place.
 #[track_caller]
 fn only(plan: &Plan, code: &str, place: &str) -> Finding {
-    let found = plan.findings();
+    one(plan.findings(), code, place)
+}
+
+/// The same of a plan that cannot be valued as it stands.
+#[track_caller]
+fn checked(plan: &Plan, code: &str, place: &str) -> Finding {
+    one(plan.checked(), code, place)
+}
+
+#[track_caller]
+fn one(found: Vec<Finding>, code: &str, place: &str) -> Finding {
     let shown: Vec<String> =
         found.iter().map(|f| format!("{} {} {}", f.kind.code(), f.place, f.words)).collect();
     assert_eq!(found.len(), 1, "{shown:#?}");
@@ -44,11 +54,11 @@ fn a_typed_number_in_a_row_of_formulas() {
     // A flow: what is typed moves the flows after it, too, as they count on from it.
     let mut plan = Plan::clean();
     plan.put(at(7, 5), "170".into());
-    let finding = only(&plan, "hard-coded", "Plan!G7");
+    let finding = only(&plan, "hard-coded", "Plan!G7 [hence_cost_running]");
     let moved: f64 = (5..YEARS).map(|i| 1.01f64.powi(i as i32 - 5) * factor(i)).sum();
     close(finding.effect_on_npv, -(170.0 - running(5)) * moved);
     // The first and the last of a row of factors.
-    for (i, cell) in [(0, "Plan!B14"), (YEARS - 1, "Plan!U14")] {
+    for (i, cell) in [(0, "Plan!B14 [hence_factor]"), (YEARS - 1, "Plan!U14 [hence_factor]")] {
         let mut plan = Plan::clean();
         plan.put(at(14, i), (factor(i) + 0.01).to_string());
         only(&plan, "hard-coded", cell);
@@ -211,4 +221,83 @@ fn thousands_against_millions() {
     let mut plan = Plan::clean();
     plan.set("B20", "=(B19-B18)/1000>0");
     only(&plan, "unit-mismatch", "Plan!B20 [hence_npv]");
+}
+
+#[test]
+fn a_cost_entered_negative_is_found_and_the_rest_is_looked_at() {
+    let mut plan = Plan::clean();
+    for i in 0..YEARS {
+        plan.put(at(6, i), (-works(i)).to_string());
+    }
+    let pv: f64 = (0..YEARS).map(|i| works(i) * factor(i)).sum();
+    // The results follow from it.
+    for i in 0..YEARS {
+        let costs = running(i) - works(i);
+        plan.put(at(8, i), format!("=SUM({}:{})>{costs}", at(6, i), at(7, i)));
+        plan.put(at(15, i), format!("={}*{}>{}", at(8, i), at(14, i), costs * factor(i)));
+    }
+    plan.set("B18", &format!("=SUM({})>{}", row(15), pv_costs() - 2.0 * pv));
+    plan.set("B20", &format!("=B19-B18>{}", pv_benefits() - pv_costs() + 2.0 * pv));
+    let place = format!("Plan!{} [hence_cost_works]", row(6));
+    let finding = checked(&plan, "negative-cost", &place);
+    close(finding.effect_on_npv, 2.0 * pv);
+    // The results are typed, so that nothing but their numbers shows where they come from.
+    plan.typed_results(pv_costs() - 2.0 * pv, pv_benefits(), pv_benefits() - pv_costs() + 2.0 * pv);
+    checked(&plan, "negative-cost", &place);
+}
+
+#[test]
+fn years_that_are_broken() {
+    // One repeated: its flows count a year early.
+    let mut plan = Plan::clean();
+    plan.put(at(4, 6), "2031".into());
+    plan.put(at(14, 6), format!("=1/(1+$B$2)^({}-$B$1)>{}", at(4, 6), factor(5)));
+    let finding = checked(&plan, "years-broken", "Plan!H4");
+    let net = water(6) + fish(6) - works(6) - running(6);
+    close(finding.effect_on_npv, net * (factor(5) - factor(6)));
+    assert_eq!((finding.found.as_str(), finding.expected.as_str()), ("2031", "2032"));
+    // As text.
+    let mut plan = Plan::clean();
+    plan.put(at(4, 9), "'2035".into());
+    let finding = checked(&plan, "years-broken", "Plan!K4");
+    assert_eq!((finding.effect_on_npv, finding.found.as_str()), (None, "the text `2035`"));
+    // All of them as texts.
+    let mut plan = Plan::clean();
+    for i in 0..YEARS {
+        plan.put(at(4, i), format!("'{}", 2026 + i));
+    }
+    checked(&plan, "years-broken", &format!("Plan!{}", row(4)));
+    // Blank; out of order; repeated, and late from there on.
+    let mut plan = Plan::clean();
+    plan.put(at(4, 3), String::new());
+    checked(&plan, "years-broken", "Plan!E4");
+    let mut plan = Plan::clean();
+    plan.put(at(4, 3), "2030".into()).put(at(4, 4), "2029".into());
+    checked(&plan, "years-broken", "Plan!E4:F4");
+    let mut plan = Plan::clean();
+    for i in 12..YEARS {
+        plan.put(at(4, i), (2025 + i).to_string());
+        plan.put(at(14, i), format!("=1/(1+$B$2)^({}-$B$1)>{}", at(4, i), factor(i - 1)));
+    }
+    checked(&plan, "years-broken", "Plan!N4:U4");
+    // One left out: everything after it counts a year late, or a column is missing.
+    let mut plan = Plan::clean();
+    for i in 12..YEARS {
+        plan.put(at(4, i), (2027 + i).to_string());
+        let late = factor(i + 1);
+        plan.put(at(14, i), format!("=1/(1+$B$2)^({}-$B$1)>{late}", at(4, i)));
+    }
+    let found = plan.findings();
+    assert!(
+        found.iter().any(|f| f.kind.code() == "years-broken" && f.place.to_string() == "Plan!N4"),
+        "{found:#?}"
+    );
+}
+
+#[test]
+fn a_total_named_beside_its_parts() {
+    let mut plan = Plan::clean();
+    plan.name("hence_cost_all", Some(&row(8)));
+    let finding = checked(&plan, "double-count", &format!("Plan!{} [hence_cost_all]", row(8)));
+    close(finding.effect_on_npv, -pv_costs());
 }

@@ -148,8 +148,48 @@ fn call(name: &str, parts: &[Expr], cells: &Cells, element: Option<usize>) -> Op
             one(0).map(|x| (x * power).round() / power)
         }
         "N" | "IFERROR" => one(0),
+        "MATCH" => {
+            let exact = parts.len() > 2 && one(2)? == 0.0;
+            found_at(one(0)?, parts.get(1)?, cells, exact).map(|k| (k + 1) as f64)
+        }
+        "INDEX" | "HLOOKUP" | "VLOOKUP" => held(cells, picked(name, parts, cells, element)?),
         _ => None,
     }
+}
+
+/// The cell that a look-up takes its result from.
+fn picked(name: &str, parts: &[Expr], cells: &Cells, element: Option<usize>) -> Option<At> {
+    let one = |i: usize| parts.get(i).and_then(|part| at(part, cells, element));
+    let step = |x: f64, most: u32| (x >= 1.0 && x <= f64::from(most)).then_some(x as u32 - 1);
+    let Some(Expr::Cells(sheet, range)) = parts.get(usize::from(name != "INDEX")) else { return None };
+    let Range { first, last } = *range;
+    let (down, along) = match name {
+        "INDEX" if range.rows() == 1 && parts.len() == 2 => (0, step(one(1)?, range.cols())?),
+        "INDEX" => {
+            (step(one(1)?, range.rows())?, if parts.len() > 2 { step(one(2)?, range.cols())? } else { 0 })
+        }
+        _ => {
+            let exact = parts.len() > 3 && one(3)? == 0.0;
+            let across = name == "HLOOKUP";
+            let end = if across { Cell::new(first.row, last.col) } else { Cell::new(last.row, first.col) };
+            let keys = Expr::Cells(*sheet, Range::new(first, end));
+            let k = u32::try_from(found_at(one(0)?, &keys, cells, exact)?).ok()?;
+            if across { (step(one(2)?, range.rows())?, k) } else { (k, step(one(2)?, range.cols())?) }
+        }
+    };
+    Some((*sheet, Cell::new(first.row + down, first.col + along)))
+}
+
+/// Where a number stands in a row or column of keys; unless exactly, the last key that is no larger.
+fn found_at(wanted: f64, keys: &Expr, cells: &Cells, exact: bool) -> Option<usize> {
+    let Expr::Cells(sheet, range) = keys else { return None };
+    let mut keys = cells.inside(*sheet, *range).filter_map(|(cell, content)| Some((cell, content.number()?)));
+    let cell = if exact {
+        keys.find(|(_, key)| *key == wanted)?.0
+    } else {
+        keys.take_while(|(_, key)| *key <= wanted).last()?.0
+    };
+    Some((cell.row - range.first.row + cell.col - range.first.col) as usize)
 }
 
 /// How much one result moves with each cell that it rests on, directly or through others.
@@ -284,6 +324,12 @@ impl Slopes {
             "ABS" if worth(0).is_some() => {
                 self.push(&parts[0], weight * worth(0).unwrap_or_default().signum(), cells, element);
             }
+            "INDEX" | "HLOOKUP" | "VLOOKUP" => match picked(name, parts, cells, element) {
+                Some(cell) => self.add(cell, weight),
+                None => self.unknown(whole, cells),
+            },
+            // Where a number stands moves in steps.
+            "MATCH" => {}
             "MIN" | "MAX" if parts.iter().all(|part| length(part) == Some(1)) => {
                 let wanted = call(name, parts, cells, element);
                 match parts.iter().find(|part| at(part, cells, element) == wanted && wanted.is_some()) {

@@ -80,7 +80,7 @@ impl Cells {
                     open.extend(expr.ranges().into_iter().map(|(sheet, _)| sheet));
                 }
                 let back = |text: &String| shift(text, -i64::from(at.row), -i64::from(at.col));
-                let shape = cell.formula.as_ref().map(|text| back(text).replace(' ', "").to_uppercase());
+                let shape = cell.formula.as_ref().map(back);
                 let content = Content { value: cell.value.clone(), expr, shape, format: cell.format.clone() };
                 found.insert(*at, content);
             }

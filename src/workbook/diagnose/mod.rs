@@ -11,6 +11,7 @@ pub mod effect;
 mod expr;
 mod factors;
 mod lines;
+mod mend;
 mod reach;
 mod rows;
 mod seen;
@@ -19,21 +20,31 @@ pub mod structure;
 mod sums;
 mod totals;
 mod units;
+mod years;
 
+pub(crate) use mend::{mend, unvalued};
 pub use seen::{Compared, Seen, Standing};
 
 use crate::findings::Finding;
 use crate::problem::Result;
 use crate::references::SheetRange;
 
-/// Every mistake of a workbook.
+/// Every mistake of a workbook, `known` ones first; what only repeats those explains cells, and is not told again.
 ///
 /// **Errors**: those of reading its formulas.
-pub fn findings(seen: &Seen) -> Result<Vec<Finding>> {
-    let mut findings = structure::findings(seen)?;
+pub(crate) fn findings(
+    seen: &Seen,
+    known: Vec<Finding>,
+    repeats: impl Fn(&Finding) -> bool,
+) -> Result<Vec<Finding>> {
+    let told = known.len();
+    let mut findings = known;
+    findings.extend(structure::findings(seen)?);
     let reach = reach::of(seen, &findings)?;
     let mut rows = factors::rows(seen);
     findings.extend(factors::findings(seen, &mut rows, |at: &SheetRange| reach.holds(at)));
     differs::add(seen, &rows, &mut findings)?;
+    let later = findings.split_off(told);
+    findings.extend(later.into_iter().filter(|finding| !repeats(finding)));
     Ok(findings)
 }

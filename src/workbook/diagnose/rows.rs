@@ -5,9 +5,10 @@ use std::collections::HashMap;
 use super::calc::value;
 use super::expr::{At, Expr};
 use super::lines::Line;
-use super::structure::{Look, figure};
+use super::structure::{Look, exact, figure};
 use crate::appraisal::Direction;
 use crate::findings::{Finding, Kind};
+use crate::patch::Cached;
 use crate::problem::Place;
 use crate::references::{Range, shift};
 
@@ -141,9 +142,17 @@ fn formula(shape: &str, (_, cell): At) -> String {
     shift(shape, i64::from(cell.row), i64::from(cell.col))
 }
 
-/// What the formula of a shape would give in a cell.
+/// What the formula of a shape would give in a cell; where it is not understood, what the basis gives there.
 fn expected(look: &Look, at: At, shape: &str) -> Option<f64> {
-    value(&Expr::read(&formula(shape, at), at.0, look.seen.book), &look.cells)
+    let own = value(&Expr::read(&formula(shape, at), at.0, look.seen.book), &look.cells);
+    own.or_else(|| {
+        let name = &look.seen.book.sheets[at.0].name;
+        let cell = |c: &&super::Compared| c.at.sheet == *name && c.at.range.first == at.1;
+        match look.seen.compared.iter().find(cell)?.expected {
+            Cached::Number(x) => Some(x),
+            _ => None,
+        }
+    })
 }
 
 fn finding(look: &Look, line: &Line, slip: &Slip) -> Finding {
@@ -155,7 +164,10 @@ fn finding(look: &Look, line: &Line, slip: &Slip) -> Finding {
     let list = |numbers: &[f64]| numbers.iter().map(|x| figure(*x)).collect::<Vec<_>>().join(", ");
     let text = formula(&slip.shape, first);
     let give = match own.iter().copied().collect::<Option<Vec<f64>>>() {
-        Some(own) => format!("={text}, which gives {}", list(&own)),
+        Some(own) => {
+            let exact: Vec<String> = own.iter().map(|x| exact(*x)).collect();
+            format!("={text}, which gives {}", exact.join(", "))
+        }
         None => format!("={text}"),
     };
     // The mistake moves the result by what the cell holds beyond its formula; several cells add up.

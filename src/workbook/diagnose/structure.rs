@@ -8,22 +8,41 @@ use super::cells::Cells;
 use super::effect::Effect;
 use super::expr::At;
 use super::lines::{Line, lines};
-use super::{rows, signs, sums, totals, units};
+use super::{rows, signs, sums, totals, units, years};
 use crate::appraisal::{Choice, Held, Target, TargetRole};
 use crate::findings::Finding;
 use crate::problem::Result;
+use crate::references::SheetRange;
 
 /// Every structural mistake of a workbook that could be read, in no particular order.
 ///
 /// **Errors**: those of reading cells.
 pub fn findings(seen: &Seen) -> Result<Vec<Finding>> {
     let look = Look::new(seen)?;
-    let mut found = rows::findings(&look);
+    let mut found = years::findings(&look);
+    found.extend(rows::findings(&look));
     found.extend(totals::findings(&look));
     found.extend(sums::findings(&look, &found));
     found.extend(signs::findings(&look));
     found.extend(units::findings(&look));
+    found.iter_mut().for_each(|finding| call(finding, seen));
     Ok(found)
+}
+
+/// Adds the name that the cells of a finding go by.
+fn call(finding: &mut Finding, seen: &Seen) {
+    let (Some(sheet), Some(range), None) = (&finding.place.sheet, finding.place.range, &finding.place.name)
+    else {
+        return;
+    };
+    let inside = |at: &SheetRange| {
+        at.sheet == *sheet && at.range.contains(range.first) && at.range.contains(range.last)
+    };
+    let choices = || seen.appraisal.choices.iter();
+    let streams = choices().flat_map(|choice| &choice.streams).map(|stream| (&stream.at, &stream.from));
+    let targets = choices().flat_map(|choice| &choice.targets).map(|target| (&target.at, &target.from));
+    let name = streams.chain(targets).find(|(at, _)| inside(at)).map(|(_, from)| from.clone());
+    finding.place.name = name;
 }
 
 /// What the diagnoses of structure share.
@@ -134,4 +153,10 @@ pub(super) fn figure(x: f64) -> String {
     let part = part.trim_end_matches('0');
     let sign = if x < 0.0 && text.contains(|c: char| matches!(c, '1'..='9')) { "-" } else { "" };
     if part.is_empty() { format!("{sign}{grouped}") } else { format!("{sign}{grouped}.{part}") }
+}
+
+/// A number as a cell holds it, to the fifteen digits that spreadsheet programs show.
+pub(super) fn exact(x: f64) -> String {
+    let shown: f64 = format!("{x:.14e}").parse().unwrap_or(x);
+    shown.to_string()
 }

@@ -27,6 +27,7 @@ use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
 use crate::reading::{Grid, Sheets};
 use crate::references::{Cell, Range, SheetRange};
 
+pub(crate) use cells::text_as_number;
 pub(crate) use counted::sum_of;
 pub use report::{Found, NamesReport, names};
 pub use series::{SeriesGrowth, growth_of_series};

@@ -6,6 +6,7 @@ use hence_core::Catalogue;
 use hence_workbook::diagnose::Seen;
 use hence_workbook::diagnose::structure::findings;
 use hence_workbook::fill::{FillRequest, fill};
+use hence_workbook::findings::Kind;
 use hence_workbook::model::Workbook;
 use hence_workbook::package::Package;
 
@@ -17,7 +18,10 @@ fn said(package: &Package, roles: &[(String, String)]) -> Vec<String> {
     let book = Workbook::read(package).expect("a workbook");
     let catalogue = Catalogue::builtin();
     let seen = Seen::look(package, &book, roles, &catalogue).unwrap_or_else(|error| panic!("{error}"));
-    let found = findings(&seen).expect("cells are read");
+    let mut found = findings(&seen).expect("cells are read");
+    // Some of the random workbooks leave a year out on purpose, of which hence warns.
+    let gap = seen.problems.iter().any(|problem| problem.code == "years-gap");
+    found.retain(|finding| !(gap && finding.kind == Kind::YearsBroken));
     found.iter().map(|f| format!("{} {}: {}; {}", f.kind.code(), f.place, f.found, f.words)).collect()
 }
 

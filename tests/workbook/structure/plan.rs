@@ -6,6 +6,7 @@
 use std::collections::BTreeMap;
 
 use hence_core::Catalogue;
+use hence_workbook::check::check;
 use hence_workbook::diagnose::Seen;
 use hence_workbook::diagnose::structure::findings;
 use hence_workbook::findings::Finding;
@@ -162,6 +163,13 @@ impl Plan {
         let catalogue = Catalogue::builtin();
         let seen = Seen::look(&package, &book, &[], &catalogue).unwrap_or_else(|error| panic!("{error}"));
         findings(&seen).expect("cells are read")
+    }
+
+    /// What `check` finds, with all that keeps the plan from being valued as it stands.
+    pub fn checked(&self) -> Vec<Finding> {
+        let (package, _) = self.small().open();
+        let report = check(&package, &[], &Catalogue::builtin()).unwrap_or_else(|error| panic!("{error}"));
+        report.findings
     }
 
     /// The same as `code place`.
