@@ -63,19 +63,25 @@ impl<'s, 'a> Consequences<'s, 'a> {
         })
     }
 
-    /// Whether every total of present values that an option shows, one at least, follows from the factors.
-    pub fn gives(&self, choice: usize) -> bool {
+    /// Whether every total of present values that an option shows, one at least, follows from the factors: with all
+    /// digits, or as it is shown.
+    pub fn gives(&self, choice: usize, exactly: bool) -> bool {
         let mut totals = self.totals(choice).peekable();
-        totals.peek().is_some() && totals.all(|cell| self.follows(cell))
+        let within = |cell: &Compared| if exactly { 0.0 } else { cell.tolerance };
+        totals.peek().is_some() && totals.all(|cell| self.holds(cell, within(cell)))
     }
 
     /// Whether a cell that differs holds what follows from other cells of the workbook.
     pub fn follows(&self, cell: &Compared) -> bool {
+        self.holds(cell, cell.tolerance)
+    }
+
+    fn holds(&self, cell: &Compared, tolerance: f64) -> bool {
         let Some(found) = self.seen.held(cell).number() else { return false };
         let role = &self.seen.target(cell).role;
         self.values(cell.choice, role, cell.index)
             .into_iter()
-            .any(|value| (found - value).abs() <= cell.tolerance.max(RELATIVE * value.abs()))
+            .any(|value| (found - value).abs() <= tolerance.max(RELATIVE * value.abs()))
     }
 
     /// Whether anything before the totals of an option differs.
