@@ -34,7 +34,7 @@ struct DifferenceOut {
 /// Exit 0 when all agree, 1 on any difference.
 pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    let (roles, plan) = (super::roles(&args.roles)?, super::plan(&args.roles, Some(&args.of))?);
+    let (roles, plan) = (super::roles(&args.roles)?, super::planned(&args.roles, Some(&args.of))?);
     let request = CheckRequest { roles, plan };
     let shown = input::shown(&args.source.book);
     let progress = Progress::start();

@@ -22,7 +22,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
         basis: args.basis.clone(),
         replace: args.replace.as_deref().map(|text| super::pair(text, "--replace", "OLD=NEW")).transpose()?,
         roles: super::roles(&args.roles)?,
-        plan: super::plan(&args.roles, None)?,
+        plan: super::planned(&args.roles, None)?,
         formulas: args.write == WriteWhat::Formulas,
         replace_formulas: args.replace_formulas,
         against: super::against(&args.against, &catalogue)?,
