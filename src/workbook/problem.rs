@@ -58,9 +58,6 @@ impl Place {
 
 impl fmt::Display for Place {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        if let Some(line) = self.line {
-            return write!(f, "line {line}");
-        }
         match (&self.sheet, self.range, &self.name) {
             (Some(sheet), Some(range), name) => {
                 write!(f, "{}!{range}", quote_sheet(sheet))?;
@@ -71,7 +68,10 @@ impl fmt::Display for Place {
                 name.as_ref().map_or(Ok(()), |name| write!(f, " [{name}]"))
             }
             (None, _, Some(name)) => write!(f, "[{name}]"),
-            (None, _, None) => write!(f, "workbook"),
+            (None, _, None) => match self.line {
+                Some(line) => write!(f, "line {line}"),
+                None => write!(f, "workbook"),
+            },
         }
     }
 }

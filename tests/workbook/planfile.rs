@@ -384,3 +384,46 @@ fn beside_appraisals_names_count_for_settings_alone() {
     assert!(message.contains("2 appraisals: North, South"), "{message}");
     assert!(plan.only(Some("South".into())).part(&model).is_ok());
 }
+
+/// The workbook that `wrong.txt` is about.
+fn one_for_wrong_plans() -> Package {
+    let site = "A4: 'Year | 2025 | 2026 | 2027 | 2028\nA5: 'Works | 1 | 2 | 3 | 4\nA9: 'NPV |";
+    let book = Small::default()
+        .sheet("Flows", FLOWS)
+        .names("Works_row B5:E5")
+        .sheet("Notes", "A1: 'nothing")
+        .sheet("Site 1", site)
+        .sheet("Site 2", site)
+        .raw_name("Broken", "Flows!#REF!");
+    Package::from_bytes("book.xlsx", book.bytes()).expect("a package")
+}
+
+#[test]
+fn wrong_plans_are_explained_by_line_and_cell() {
+    let text = include_str!("planfile/wrong.txt");
+    let package = one_for_wrong_plans();
+    let mut cases = 0;
+    let mut wrong = String::new();
+    for case in text.split("\n== ").skip(1) {
+        let (title, rest) = case.split_once('\n').expect("a title");
+        let (plan, due) = rest.split_once("\n--\n").expect("a plan and what is said of it");
+        let found = match PlanFile::parse("shelf.toml", plan) {
+            Ok(plan) => {
+                let request = FillRequest { plan: Some(plan), ..FillRequest::default() };
+                fill(&package, &request, &Catalogue::builtin()).expect_err(title)
+            }
+            Err(error) => error,
+        };
+        let told: String = found
+            .problems()
+            .iter()
+            .map(|p| format!("{p}\n  Try: {}\n", p.hint.as_deref().unwrap_or("-")))
+            .collect();
+        if told.trim() != due.trim() {
+            wrong.push_str(&format!("== {title}\n{plan}\n--\n{told}\n"));
+        }
+        cases += 1;
+    }
+    assert!(wrong.is_empty(), "otherwise:\n{wrong}");
+    assert!(cases >= 10, "{cases}");
+}

@@ -8,7 +8,7 @@ use crate::own::own_sheets;
 use crate::problem::{Place, Problem, Result};
 use crate::reading::Value;
 use crate::references::{Range, SheetRange, quote_sheet};
-use crate::roles::{RoleName, key};
+use crate::roles::{Role, RoleName, key};
 
 use super::PlanFile;
 use super::parse::{Entry, Section, What};
@@ -29,6 +29,8 @@ pub(crate) struct Planned {
     pub name: RoleName,
     /// `shelf.toml line 7, cost_works`.
     pub from: String,
+    /// Its line.
+    pub line: u32,
     /// What it says.
     pub says: Says,
 }
@@ -42,6 +44,19 @@ pub struct Part {
     pub(crate) entries: Vec<Planned>,
     /// What of the plan does not fit the workbook.
     pub(crate) problems: Vec<Problem>,
+    /// Roles among what does not fit: they are wrong, not missing.
+    pub(crate) lost: Vec<Role>,
+}
+
+impl Planned {
+    /// Where the plan says it.
+    pub(crate) fn place(&self) -> Place {
+        in_plan(&self.from, self.line)
+    }
+}
+
+fn in_plan(from: &str, line: u32) -> Place {
+    Place { line: Some(line), ..Place::name(from) }
 }
 
 impl PlanFile {
@@ -131,7 +146,7 @@ impl<'a> Sheets<'a> {
     }
 
     fn place(&self, line: u32) -> Place {
-        Place::name(&format!("{} line {line}", self.file))
+        in_plan(&format!("{} line {line}", self.file), line)
     }
 
     fn no_sheet(&self, line: u32, wanted: &str) -> Problem {
@@ -206,25 +221,26 @@ impl<'a> Sheets<'a> {
             What::Number(x) => Says::Value(Value::Number(*x)),
             What::Text(text) => Says::Value(Value::Text(text.clone())),
             What::Date(date) => Says::Value(Value::Date(serial(*date, self.book.date1904))),
-            What::Cells(text) => match self.cells(text, &from, within) {
+            What::Cells(text) => match self.cells(text, &in_plan(&from, entry.line), within) {
                 Ok(text) => Says::Cells(text),
                 Err(problem) => {
                     part.problems.push(*problem);
+                    part.lost.push(name.role);
                     return;
                 }
             },
         };
-        part.entries.push(Planned { name, from, says });
+        part.entries.push(Planned { name, from, line: entry.line, says });
     }
 
     /// Cells with their sheet: as given, or that of the option, the appraisal or the plan.
     fn cells(
         &self,
         text: &str,
-        from: &str,
+        place: &Place,
         within: &[&Section],
     ) -> std::result::Result<String, Box<Problem>> {
-        let place = || Place::name(from);
+        let place = || place.clone();
         if let Ok(at) = text.parse::<SheetRange>() {
             if self.book.sheet_index(&at.sheet).is_some() {
                 return Ok(text.to_owned());

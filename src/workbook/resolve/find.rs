@@ -22,6 +22,8 @@ pub(super) struct Named {
     pub scope: Option<String>,
     /// What it says, where a plan states it without a cell; `at` is then no place.
     pub stated: Option<Value>,
+    /// The line of the plan that it comes from.
+    pub line: Option<u32>,
 }
 
 impl Named {
@@ -29,7 +31,7 @@ impl Named {
     pub(super) fn place(&self) -> Place {
         match self.cells() {
             Some(at) => Place::cells(&at.sheet, at.range).called(&self.from),
-            None => Place::name(&self.from),
+            None => Place { line: self.line, ..Place::name(&self.from) },
         }
     }
 
@@ -47,9 +49,10 @@ impl Named {
     }
 
     /// Stated by a plan in no cell.
-    fn without_cell(name: RoleName, from: String, value: Value) -> Self {
+    fn without_cell(planned: &Planned, value: Value) -> Self {
         let at = SheetRange::new("", Range::cell(Cell::new(0, 0)));
-        Named { name, from, at, scope: None, stated: Some(value) }
+        let (name, from) = (planned.name.clone(), planned.from.clone());
+        Named { name, from, at, scope: None, stated: Some(value), line: Some(planned.line) }
     }
 
     /// More cells than are read as one range.
@@ -75,7 +78,10 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)], plan: Opti
         }
         match from_plan(context, planned) {
             Ok(named) => found.push(named),
-            Err(problem) => context.report(*problem),
+            Err(problem) => {
+                context.lost.insert(planned.name.role);
+                context.report(*problem);
+            }
         }
     }
     let several = plan.is_some_and(|plan| plan.appraisal.is_some());
@@ -101,7 +107,7 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)], plan: Opti
         match (cells(context, defined), stronger) {
             (Ok(at), None) => {
                 let scope = scope(context, defined);
-                found.push(Named { name, from: defined.name.clone(), at, scope, stated: None });
+                found.push(Named { name, from: defined.name.clone(), at, scope, stated: None, line: None });
             }
             (Ok(at), Some((_, planned))) => disagreement(context, &planned, &defined.name, &at),
             (Err(problem), None) => context.report(*problem),
@@ -156,7 +162,7 @@ fn disagreement(context: &mut Context, planned: &Named, name: &str, at: &SheetRa
     if !weighty.contains(&planned.name.role) || planned.cells().as_ref() == Some(at) {
         return;
     }
-    let named = Named { from: name.to_owned(), at: at.clone(), stated: None, ..planned.clone() };
+    let named = Named { from: name.to_owned(), at: at.clone(), stated: None, line: None, ..planned.clone() };
     let (held, said) = (held(context, &named), held(context, planned));
     if held.is_empty() || held.eq_ignore_ascii_case(&said) {
         return;
@@ -191,10 +197,15 @@ pub(super) fn held(context: &mut Context, named: &Named) -> String {
 fn from_plan(context: &Context, planned: &Planned) -> Checked<Named> {
     let (name, from) = (planned.name.clone(), planned.from.clone());
     match &planned.says {
-        Says::Value(value) => Ok(Named::without_cell(name, from, value.clone())),
+        Says::Value(value) => Ok(Named::without_cell(planned, value.clone())),
         Says::Cells(text) => {
-            let at = located(context, Place::name(&from), text)?;
-            Ok(Named { name, from, at, scope: None, stated: None })
+            let at = located(context, planned.place(), text).map_err(|problem| {
+                // What is wrong with a name that the plan uses is told at the plan's line.
+                let called = problem.place.name.clone().filter(|name| *name != from);
+                let message = called.map_or_else(String::new, |name| format!("the name {name} "));
+                Problem { message: message + &problem.message, place: planned.place(), ..*problem }
+            })?;
+            Ok(Named { name, from, at, scope: None, stated: None, line: Some(planned.line) })
         }
     }
 }
@@ -209,7 +220,7 @@ fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Name
     if name.role.info().way == Way::Own {
         return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given").into());
     }
-    Ok(Named { name, from, at: located(context, place, range)?, scope: None, stated: None })
+    Ok(Named { name, from, at: located(context, place, range)?, scope: None, stated: None, line: None })
 }
 
 /// The cells that a text such as `Sheet1!C7:F7`, or a defined name, stands for; `place` is where the text comes from.

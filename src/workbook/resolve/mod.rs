@@ -27,6 +27,7 @@ use crate::planfile::Part;
 use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
 use crate::reading::{Grid, Sheets};
 use crate::references::{Cell, Range, SheetRange};
+use crate::roles::Role;
 
 pub(crate) use counted::sum_of;
 pub use report::{Found, NamesReport, names};
@@ -60,6 +61,8 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
     if let Some(plan) = options.plan {
         context.problems.extend(plan.problems.iter().cloned());
         context.appraisal = plan.appraisal.clone();
+        context.planned = true;
+        context.lost.extend(&plan.lost);
     }
     let named = find::find(&mut context, options.roles, options.plan);
     let ranges: Vec<SheetRange> =
@@ -93,6 +96,10 @@ struct Context<'a> {
     problems: Vec<Problem>,
     /// Which of several appraisals of the workbook this is.
     appraisal: Option<String>,
+    /// There is a plan.
+    planned: bool,
+    /// Roles that the plan gives to cells which are not there.
+    lost: BTreeSet<Role>,
 }
 
 impl<'a> Context<'a> {
@@ -105,7 +112,8 @@ impl<'a> Context<'a> {
         };
         let problems = book.problems.iter().filter(ours).cloned().collect();
         let (facts, settings) = (BTreeMap::new(), BTreeMap::new());
-        Ok(Context { package, book, sheets, facts, settings, problems, appraisal: None })
+        let (appraisal, planned, lost) = (None, false, BTreeSet::new());
+        Ok(Context { package, book, sheets, facts, settings, problems, appraisal, planned, lost })
     }
 
     /// What a sheet holds besides values; nothing where it cannot be read, which is reported.
@@ -158,7 +166,8 @@ impl<'a> Context<'a> {
             let sheet = problem.place.sheet.as_deref();
             let index = sheet
                 .map_or(0, |name| 1 + order.iter().position(|known| *known == name).unwrap_or(order.len()));
-            (index, problem.place.range.map(|range| range.first), problem.code, problem.message.clone())
+            let (cell, line) = (problem.place.range.map(|range| range.first), problem.place.line);
+            (index, cell, line, problem.code, problem.message.clone())
         });
         problems.retain(|problem| seen.insert(format!("{problem} {:?}", problem.hint)));
         merge_neighbours(problems)
