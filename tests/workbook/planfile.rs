@@ -2,6 +2,8 @@
 //!
 //! The workbooks are made up for these tests.
 
+mod proposed;
+
 use hence_core::Catalogue;
 use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::fill::{FillRequest, Filled, fill};

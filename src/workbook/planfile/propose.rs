@@ -10,7 +10,7 @@ use crate::resolve::{Found, Options, names, resolve};
 use crate::roles::{PREFIX, Role, RoleName, key, parse_name};
 use crate::suggest::{Guess, slug, suggest};
 
-use super::PlanFile;
+use super::{PlanFile, Planned, Says};
 
 /// A proposed plan.
 #[derive(Clone, Debug, PartialEq)]
@@ -44,10 +44,12 @@ pub fn propose(package: &Package) -> Result<Proposal> {
         problems.push(problem.hint("fill in the lines of the plan by hand"));
     }
     let found = lines.len();
+    let base = trial_base(&lines);
     let mut page = Page::of(package.file_name(), lines);
     // The plan is tried: rows that it leaves out are offered, and what a fill would stop at is told.
     let plan = PlanFile::parse("plan", &page.text())?;
-    let part = plan.part(&book)?;
+    let mut part = plan.part(&book)?;
+    part.entries.extend(base);
     // Any rate will do to see which rows would be left out.
     match resolve(package, &book, &Options { basis: Some("0%"), plan: Some(&part), ..Options::default() }) {
         Ok(appraisal) => {
@@ -61,6 +63,20 @@ pub fn propose(package: &Package) -> Result<Proposal> {
         }
     }
     Ok(Proposal { text: page.text(), found, problems })
+}
+
+/// Where no base was found, the first year stands in for it while the plan is tried.
+fn trial_base(lines: &[Line]) -> Option<Planned> {
+    let years = lines.iter().find(|line| line.name.role == Role::Years)?;
+    let first = SheetRange { range: Range::cell(years.at.range.first), ..years.at.clone() };
+    let name = RoleName { role: Role::Base, stream: None, option: None };
+    let none = !lines.iter().any(|line| line.name.role == Role::Base);
+    none.then(|| Planned {
+        name,
+        from: "the first year".to_owned(),
+        line: 0,
+        says: Says::Cells(first.to_string()),
+    })
 }
 
 /// One role that was found.
