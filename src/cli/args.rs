@@ -147,6 +147,13 @@ pub struct Fill {
     /// Change the basis from OLD to NEW; a workbook on another basis is refused
     #[arg(long, value_name = "OLD=NEW", conflicts_with = "basis")]
     pub replace: Option<String>,
+    /// Value at this base (a year, a financial year or a date), and write it into the base cell
+    #[arg(long, value_name = "YEAR")]
+    pub base: Option<String>,
+    /// Value in these prices, `real 2026`, and write them into the price basis cell; the workbook has to say how prices
+    /// change
+    #[arg(long, value_name = "PRICES")]
+    pub prices: Option<String>,
     #[command(flatten)]
     pub roles: Roles,
     /// What to write into the targets

@@ -2,22 +2,19 @@
 
 use hence_core::Catalogue;
 
-use crate::appraisal::{Appraisal, Held, Target};
-use crate::formulas::expected;
-use crate::layout::Layout;
+use crate::appraisal::Held;
+use crate::diagnose::{Compared, Seen, Standing};
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::patch::Cached;
-use crate::plan::{same_text, span, words};
+use crate::plan::{span, words};
 use crate::planfile::PlanFile;
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, Severity};
 use crate::references::SheetRange;
 use crate::report::Status;
-use crate::resolve::{Options, resolve};
-use crate::sheets::{SheetNames, role_words};
-use crate::tolerance;
-use crate::valuation::{cell_of, value};
+use crate::resolve::Options;
+use crate::sheets::role_words;
 
 /// One cell that does not hold what the basis gives.
 #[derive(Clone, Debug, PartialEq)]
@@ -75,97 +72,63 @@ pub struct CheckRequest {
 pub fn check(package: &Package, request: &CheckRequest, catalogue: &Catalogue) -> Result<CheckReport> {
     let problems = preflight(package)?;
     let book = Workbook::read(package)?;
-    let mut report = CheckReport { agree: 0, differences: Vec::new(), not_filled: Vec::new(), problems };
+    let mut checked = CheckReport { agree: 0, differences: Vec::new(), not_filled: Vec::new(), problems };
     let parts = match &request.plan {
         Some(plan) => plan.parts(&book)?.into_iter().map(Some).collect(),
         None => vec![None],
     };
     for part in parts {
-        let options = Options { roles: &request.roles, basis: None, plan: part.as_ref() };
-        check_appraisal(&resolve(package, &book, &options)?, catalogue, &mut report)?;
+        let options = Options { roles: &request.roles, plan: part.as_ref(), ..Options::default() };
+        report(&Seen::look(package, &book, &options, catalogue)?, &mut checked);
     }
-    Ok(report)
+    Ok(checked)
 }
 
-/// Checks the targets of one appraisal.
-fn check_appraisal(appraisal: &Appraisal, catalogue: &Catalogue, report: &mut CheckReport) -> Result<()> {
-    let (outcomes, found) = value(appraisal, catalogue)?;
-    for problem in appraisal.problems.iter().chain(&found) {
+/// The comparison cell by cell. What was said of the workbook for another appraisal of it is not said again.
+fn report(seen: &Seen, report: &mut CheckReport) {
+    for problem in &seen.problems {
         if !report.problems.contains(problem) {
             report.problems.push(problem.clone());
         }
     }
-    let layout = Layout::new(appraisal, &outcomes, &SheetNames::choose(&[]));
-    for (c, choice) in appraisal.choices.iter().enumerate() {
-        for target in &choice.targets {
-            let results = expected(appraisal, &outcomes, &layout, c, target);
-            report.target(target, &results);
+    for cells in seen.compared.chunk_by(|a, b| (a.choice, a.target) == (b.choice, b.target)) {
+        let cells_that = |standing: Standing| -> Vec<SheetRange> {
+            cells.iter().filter(|cell| cell.standing == standing).map(|cell| cell.at.clone()).collect()
+        };
+        report.agree += cells_that(Standing::Agrees).len();
+        let differ = cells.iter().filter(|cell| cell.standing == Standing::Differs);
+        report.differences.extend(differ.map(|cell| difference(seen, cell)));
+        let target = seen.target(&cells[0]);
+        if let Some(place) = span(&cells_that(Standing::Blank)) {
+            report.not_filled.push(place.called(&target.from));
         }
-    }
-    Ok(())
-}
-
-fn number(result: &Cached) -> Option<f64> {
-    if let Cached::Number(x) = result { Some(*x) } else { None }
-}
-
-impl CheckReport {
-    fn target(&mut self, target: &Target, results: &[Cached]) {
-        let mut blank = Vec::new();
-        let mut waiting = Vec::new();
-        for (i, (held, result)) in target.held.iter().zip(results).enumerate() {
-            let at = cell_of(&target.at, i);
-            match (held, result) {
-                (Held::Blank, _) => blank.push(at),
-                (Held::Formula { value: None, shown: None, .. }, _) => waiting.push(at),
-                (Held::Number(found) | Held::Formula { value: Some(found), .. }, Cached::Number(x)) => {
-                    if (found - x).abs() <= tolerance::of_cell(target, i, *x) {
-                        self.agree += 1;
-                    } else {
-                        self.differ(target, &at, found.to_string(), Some(*x), Some(found - x));
-                    }
-                }
-                (Held::Text(found) | Held::Formula { shown: Some(found), .. }, Cached::Text(text))
-                    if same_text(found, text) =>
-                {
-                    self.agree += 1;
-                }
-                (Held::Formula { shown: Some(found), .. }, result) => {
-                    self.differ(target, &at, found.clone(), number(result), None);
-                }
-                (held, result) => self.differ(target, &at, words(held), number(result), None),
-            }
-        }
-        if let Some(place) = span(&blank) {
-            self.not_filled.push(place.called(&target.from));
-        }
+        let waiting = cells_that(Standing::Awaits);
         if let Some(place) = span(&waiting) {
             let message = format!(
                 "{} of {} formulas have no result in the file, so nothing was compared",
                 waiting.len(),
                 target.held.len()
             );
-            self.problems.push(
+            report.problems.push(
                 Problem::warning("awaits-recalculation", place.called(&target.from), message)
                     .hint("open and save the workbook in a spreadsheet program first"),
             );
         }
     }
+}
 
-    fn differ(
-        &mut self,
-        target: &Target,
-        at: &SheetRange,
-        found: String,
-        expected: Option<f64>,
-        difference: Option<f64>,
-    ) {
-        self.differences.push(Difference {
-            place: Place::cells(&at.sheet, at.range).called(&target.from),
-            role: role_words(&target.role),
-            found,
-            expected,
-            difference,
-        });
+fn difference(seen: &Seen, cell: &Compared) -> Difference {
+    let (target, held) = (seen.target(cell), seen.held(cell));
+    let expected = if let Cached::Number(x) = cell.expected { Some(x) } else { None };
+    let found = match held {
+        Held::Formula { shown: Some(shown), .. } => shown.clone(),
+        held => held.number().map_or_else(|| words(held), |x| x.to_string()),
+    };
+    Difference {
+        place: Place::cells(&cell.at.sheet, cell.at.range).called(&target.from),
+        role: role_words(&target.role),
+        found,
+        expected,
+        difference: held.number().zip(expected).map(|(found, expected)| found - expected),
     }
 }

@@ -6,7 +6,7 @@ mod picture;
 mod search;
 mod tables;
 
-use hence_core::{Basis, Catalogue, Parameter};
+use hence_core::{Basis, Catalogue, Parameter, Spec};
 
 use crate::appraisal::{Appraisal, COMMAND_LINE, Given};
 use crate::model::Workbook;
@@ -102,6 +102,8 @@ pub struct Comparison {
     pub sides: Vec<Side>,
     /// The basis whose preference, elasticity and growth were searched, where any is stated by them.
     pub ramsey: Option<String>,
+    /// Its spec, where it dates the flows as the declared basis does.
+    pub ramsey_spec: Option<Spec>,
     /// Switching values: an entry for every option, what it is held against and every parameter.
     pub switching: Vec<Entry>,
     /// Where the best option changes, as one parameter moves.
@@ -136,8 +138,11 @@ pub fn compare(package: &Package, request: &CompareRequest, catalogue: &Catalogu
     let mut problems = preflight(package)?;
     let book = Workbook::read(package)?;
     let plan = PlanFile::part_of(request.plan.as_ref(), &book)?;
-    let mut appraisal =
-        resolve(package, &book, &Options { roles: &request.roles, basis: None, plan: plan.as_ref() })?;
+    let mut appraisal = resolve(
+        package,
+        &book,
+        &Options { roles: &request.roles, plan: plan.as_ref(), ..Options::default() },
+    )?;
     problems.append(&mut appraisal.problems);
     let (outcomes, found) = value(&appraisal, catalogue)?;
     problems.extend(found);
@@ -194,11 +199,19 @@ fn comparison(valued: &[Valued], problems: Vec<Problem>) -> Comparison {
         baseline: declared.appraisal.baseline,
         sides: valued.iter().map(side).collect(),
         ramsey: ramsey.map(|valued| valued.outcomes[0].basis.canonical()),
+        ramsey_spec: ramsey
+            .filter(|valued| dated_alike(valued, declared))
+            .map(|valued| valued.outcomes[0].basis.spec().clone()),
         switching,
         changes,
         map: None,
         problems,
     }
+}
+
+/// Whether the flows of two stand at the same offsets.
+fn dated_alike(a: &Valued, b: &Valued) -> bool {
+    a.outcomes.iter().zip(&b.outcomes).all(|(a, b)| a.dated.offsets == b.dated.offsets)
 }
 
 /// The workbook on its declared basis, on the companion of that, and on every basis asked for; each once.

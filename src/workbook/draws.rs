@@ -143,7 +143,7 @@ fn read(package: &Package, book: &Workbook, request: &DrawsRequest) -> Result<(A
     let roles = &request.roles;
     let plan = PlanFile::part_of(request.plan.as_ref(), book)?;
     let plan = plan.as_ref();
-    let error = match resolve(package, book, &Options { roles, basis: None, plan }) {
+    let error = match resolve(package, book, &Options { roles, plan, ..Options::default() }) {
         Ok(appraisal) => return Ok((appraisal, true)),
         Err(error) => error,
     };
@@ -156,7 +156,8 @@ fn read(package: &Package, book: &Workbook, request: &DrawsRequest) -> Result<(A
     if let [Some(preference), Some(elasticity), Some(growth)] = stated {
         let line = [preference, elasticity, growth].join(", ");
         // A basis that is there and cannot be read has to be mended.
-        if let Ok(appraisal) = resolve(package, book, &Options { roles, basis: Some(&line), plan })
+        if let Ok(appraisal) =
+            resolve(package, book, &Options { roles, basis: Some(&line), plan, ..Options::default() })
             && appraisal.problems.iter().all(|problem| problem.code != "basis-overridden")
         {
             return Ok((appraisal, false));

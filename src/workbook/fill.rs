@@ -1,6 +1,7 @@
 //! The main job: an analyst's workbook in, its targets filled, an audited workbook out.
 
 mod basis;
+mod bridge;
 mod work;
 
 use std::collections::{BTreeMap, BTreeSet};
@@ -34,6 +35,10 @@ use work::{Run, Work};
 pub struct FillRequest {
     /// Value on this basis, and write it into the basis cell.
     pub basis: Option<String>,
+    /// Value at this base, and write it into the base cell.
+    pub base: Option<String>,
+    /// Value in these prices (`real 2026`), and write them into the price basis cell.
+    pub prices: Option<String>,
     /// Change the basis from the first to the second; another basis is refused.
     pub replace: Option<(String, String)>,
     /// Roles for cells without a defined name: role, range.
@@ -56,6 +61,8 @@ impl Default for FillRequest {
     fn default() -> Self {
         FillRequest {
             basis: None,
+            base: None,
+            prices: None,
             replace: None,
             roles: Vec::new(),
             plan: None,

@@ -4,6 +4,7 @@ use hence_core::Payback;
 use serde::{Deserialize, Serialize};
 
 use crate::appraisal::{Appraisal, StreamKind};
+use crate::decide::{Bridge, Rule};
 use crate::outcome::{ChoiceOutcome, Totals};
 use crate::problem::{Problem, Severity};
 use crate::welfare;
@@ -107,6 +108,10 @@ pub struct OptionReport {
     pub effects: Vec<(String, Option<f64>, Option<f64>)>,
     /// The same under the companion schedule.
     pub companion: Option<Companion>,
+    /// What ranks it among the options.
+    pub decide: Rule,
+    /// From what its workbook held to how it stands now.
+    pub bridge: Bridge,
 }
 
 impl OptionReport {
@@ -219,6 +224,8 @@ pub(crate) fn option_reports(
                 .map(|(effect, (plain, discounted))| (effect.name.clone(), *plain, *discounted))
                 .collect(),
             companion: companions.get(i).cloned().flatten(),
+            decide: appraisal.decide,
+            bridge: Bridge::default(),
         })
         .collect()
 }

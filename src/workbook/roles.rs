@@ -36,6 +36,8 @@ pub enum Role {
     Baseline,
     /// The names of the streams that are the constrained cost.
     Budget,
+    /// The rule by which options are ranked.
+    Decide,
     /// The names of the streams that all options share.
     Shared,
     /// Physical effects.
@@ -184,6 +186,13 @@ pub const ROLES: &[RoleInfo] = &[
         Takes::NoStream,
         "names of the streams that are the constrained cost",
     ),
+    row(
+        Role::Decide,
+        "decide",
+        Way::In,
+        Takes::NoStream,
+        "what ranks the options: `npv`, `ratio` or `least cost`",
+    ),
     row(Role::Shared, "shared", Way::In, Takes::NoStream, "names of the streams that all options share"),
     row(
         Role::Effect,
@@ -305,6 +314,7 @@ impl Role {
                 | Role::Timing
                 | Role::Baseline
                 | Role::Budget
+                | Role::Decide
                 | Role::Shared
                 | Role::Signs
                 | Role::Unit

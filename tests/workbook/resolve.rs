@@ -8,6 +8,7 @@ use hence_workbook::resolve::Options;
 
 use crate::small::{Small, codes, lines};
 
+mod meant;
 mod options;
 mod refusals;
 

@@ -206,3 +206,43 @@ fn a_tail_is_named_where_it_keeps_a_row_from_being_live() {
     });
     assert!(said.count() >= 9);
 }
+
+/// Growth by bands: each value is put back band by band, live, and LibreOffice comes to the same; where every year has a
+/// rate of its own it is put back by the second route at the fill.
+#[test]
+fn values_under_a_path_of_growth_have_a_second_route() {
+    let live = [
+        "preference 0.5%, elasticity 1, growth 2% to 1, 4% after",
+        "preference 0.5%, hazard 1%, elasticity 1.5, growth 2% to 1, 1% after; exact",
+        "preference 0.5%, elasticity 1.5, growth 2% to 1, 1% after; continuous; flows middle, base start",
+        "preference 0.5%, elasticity 1.5, growth 2% sd 3%; flows averaged",
+    ];
+    let every_year = "preference 0.5%, elasticity 1.5, log growth 2% sd 3% persistence 0.5";
+    let check = |cells: &Cells, basis: &str, result: &str| {
+        let mut seen = 0;
+        for parameter in ["rate", "preference", "elasticity", "growth"] {
+            let none = Stored::Text("none".into());
+            for row in rows(cells, &["Mine", "zero", parameter]).iter().filter(|row| row[0] != none) {
+                assert!(number(&row[1]) <= number(&row[2]) && number(&row[2]) < 1e-5, "{basis}: {row:?}");
+                let due = if parameter == "rate" { "zero" } else { result };
+                assert_eq!(text(&row[3]), due, "{basis}, {parameter}");
+                seen += 1;
+            }
+        }
+        assert!(seen >= 6, "{basis}: {seen}");
+    };
+    let mut books = Vec::new();
+    for (i, basis) in live.iter().enumerate() {
+        let bytes = filled(&mine(basis).bytes(), &[]);
+        check(&cells(&bytes), basis, "zero");
+        books.push((format!("{i}.xlsx"), bytes));
+    }
+    check(&cells(&filled(&mine(every_year).bytes(), &[])), every_year, "zero at the fill");
+    // As another basis beside the declared one it is put back just so.
+    check(&cells(&filled(&mine("4%").bytes(), &[live[0]])), live[0], "zero");
+    let Some(soffice) = soffice() else { return };
+    let back = saved(&soffice, &books, Recalculate::All);
+    for (i, basis) in live.iter().enumerate() {
+        check(&cells(&back[&format!("{i}.xlsx")]), basis, "zero");
+    }
+}

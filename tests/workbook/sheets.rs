@@ -241,6 +241,7 @@ fn unevaluated(sheets: &[Sheet]) -> Vec<Sheet> {
                 Content::Text(text) => out.text(row, col, Style::Text, text),
                 Content::Number(x) => out.number(row, col, Style::Exact, *x),
                 Content::Formula(text, _) => out.formula(row, col, Style::Exact, text, Cached::None),
+                Content::Logical(truth) => out.logical(row, col, Style::Exact, *truth),
             }
         }
         out

@@ -1,6 +1,6 @@
 //! The argument rules: what a cell counts as, where a number, a text or a year is due.
 
-use hence_core::parse_financial_year;
+use hence_core::{Compounding, parse_financial_year};
 
 use chrono::{Days, NaiveDate};
 
@@ -129,6 +129,29 @@ pub(super) fn text<'a>(place: Place<'a>) -> Outcome<&'a str> {
             Err(Fault::value(format!("{}: found {number}, allowed is a text", place.words())))
         }
         _ => Err(Fault::value(format!("{}: found a logical value, allowed is a text", place.words()))),
+    }
+}
+
+/// A whole number from `least` to `most`.
+pub(super) fn whole(place: Place<'_>, least: u64, most: u64) -> Outcome<u64> {
+    let found = number(place)?;
+    if found.fract() == 0.0 && (least as f64..=most as f64).contains(&found) {
+        return Ok(found as u64);
+    }
+    let words = place.words();
+    Err(Fault::number(format!("{words} is {found}, allowed are whole numbers from {least} to {most}")))
+}
+
+/// The compounding that an argument states; yearly where it is left out.
+pub(super) fn compounding(arguments: &Arguments<'_>, i: usize) -> Outcome<Compounding> {
+    let Some(place) = arguments.single(i)? else { return Ok(Compounding::Yearly) };
+    match text(place)?.to_lowercase().as_str() {
+        "yearly" => Ok(Compounding::Yearly),
+        "continuous" => Ok(Compounding::Continuous),
+        other => {
+            let words = format!("{}: found the text \"{}\"", place.words(), shortened(other));
+            Err(Fault::value(words).hint("yearly or continuous"))
+        }
     }
 }
 

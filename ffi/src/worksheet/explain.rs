@@ -55,7 +55,7 @@ fn timed(arguments: &Arguments<'_>, place: Place<'_>, basis: &Basis) -> Outcome<
         }
         None => Axis::of(arguments, 1)?,
     };
-    let clock = Clock::read(arguments, &axis, basis, 3, 4)?;
+    let clock = Clock::read(arguments, &axis, basis.timing(), 3, 4)?;
     let factors = clock.factors(basis, place, &axis)?;
     let labels: Vec<String> = axis.years.iter().map(|(_, year)| label(*year)).collect();
     let named: Vec<(&str, f64)> =

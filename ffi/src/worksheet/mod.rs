@@ -6,12 +6,16 @@
 mod arguments;
 mod cells;
 mod curve;
+mod draws;
+mod evidence;
 mod explain;
 mod fault;
 mod flows;
 mod functions;
 mod spread;
+mod switching;
 mod table;
+mod welfare;
 
 pub use cells::{Cell, CellError, Range};
 pub use table::{Argument, CATEGORY, FUNCTIONS, Function};

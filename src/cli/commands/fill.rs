@@ -20,6 +20,8 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     let catalogue = super::catalogue(schedules)?;
     let request = FillRequest {
         basis: args.basis.clone(),
+        base: args.base.clone(),
+        prices: args.prices.clone(),
         replace: args.replace.as_deref().map(|text| super::pair(text, "--replace", "OLD=NEW")).transpose()?,
         roles: super::roles(&args.roles)?,
         plan: super::planned(&args.roles, None)?,

@@ -206,8 +206,11 @@ pub fn brief(package: &Package, request: &BriefRequest, catalogue: &Catalogue) -
     let mut problems = preflight(package)?;
     let book = Workbook::read(package)?;
     let plan = PlanFile::part_of(request.plan.as_ref(), &book)?;
-    let mut appraisal =
-        resolve(package, &book, &Options { roles: &request.roles, basis: None, plan: plan.as_ref() })?;
+    let mut appraisal = resolve(
+        package,
+        &book,
+        &Options { roles: &request.roles, plan: plan.as_ref(), ..Options::default() },
+    )?;
     problems.append(&mut appraisal.problems);
     let (outcomes, found) = value(&appraisal, catalogue)?;
     problems.extend(found);

@@ -20,7 +20,7 @@ const LAST: u32 = 6;
 pub fn book(package: &Package, comparison: &Comparison) -> Result<Vec<u8>> {
     let mut sheets = vec![sides(package, comparison), switching(comparison)];
     sheets.extend(comparison.map.as_ref().map(|map| letters(comparison, map)));
-    writer::workbook(&sheets)
+    writer::workbook(&sheets, &[])
 }
 
 /// Every so many points of a map, across and up, stand on its sheet.
@@ -209,7 +209,8 @@ fn switching(comparison: &Comparison) -> Sheet {
                 None => sheet.text(row, 3, Style::Instead, "none"),
             }
             let (low, high) = entry.interval;
-            let text = format!("{} to {}", shown(&entry.moved, low), shown(&entry.moved, high));
+            // Apart from the number before it.
+            let text = format!("  {} to {}", shown(&entry.moved, low), shown(&entry.moved, high));
             sheet.text(row, 4, Style::Wrapped, text);
             sheet.text(row, 5, Style::Wrapped, remark(entry));
         }

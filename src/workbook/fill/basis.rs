@@ -15,6 +15,8 @@ use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::SheetRange;
 use crate::valuation::{from_core, place_of};
 
+use super::work::Run;
+
 /// The basis that the workbook itself declares must be OLD in every option.
 pub(super) fn require_basis(
     appraisal: &Appraisal,
@@ -107,6 +109,40 @@ pub(super) fn plan_basis(
         overwrite(plan, &choice.basis, &held, "basis", write)?;
     }
     Ok(())
+}
+
+/// A base or prices that the command line gives go into the cells that state others.
+pub(super) fn plan_settings(plan: &mut Plan, run: &Run<'_>, appraisal: &Appraisal) -> Result<()> {
+    for choice in &appraisal.choices {
+        if let Some(told) = &run.request.base {
+            plan_setting(plan, run, &choice.base, "base", told)?;
+        }
+        if let (Some(told), Some(declared)) = (&run.request.prices, &choice.prices.declared) {
+            plan_setting(plan, run, declared, "price_basis", told)?;
+        }
+    }
+    Ok(())
+}
+
+fn plan_setting<T>(plan: &mut Plan, run: &Run<'_>, given: &Given<T>, what: &str, told: &str) -> Result<()> {
+    let told = told.trim();
+    let Some(at) = &given.at else {
+        let message = format!(
+            "the workbook states no {what} in a cell, so the new one stands on the audit sheets alone"
+        );
+        plan.problems.push(
+            Problem::warning("no-basis-cell", Place::name(&given.from), message)
+                .hint(format!("name a cell hence_{what}")),
+        );
+        return Ok(());
+    };
+    let planned = plan.writes.get(&at.sheet).is_some_and(|writes| writes.contains_key(&at.range.first));
+    let held = cell_held(run.package, run.book, at)?;
+    if planned || shown(&held) == told {
+        return Ok(());
+    }
+    let write = told.parse().map_or_else(|_| CellWrite::Text(told.to_owned()), CellWrite::Number);
+    overwrite(plan, given, &held, what, write)
 }
 
 /// The settings as the output will hold them: a basis (or a timing) that this fill writes is what it states.

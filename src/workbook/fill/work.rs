@@ -7,6 +7,7 @@ use hence_core::{Basis, Catalogue};
 use crate::appraisal::{Appraisal, Choice};
 use crate::companions::companions;
 use crate::compare::{Sensitivity, sensitivity};
+use crate::decide::Bridge;
 use crate::follow;
 use crate::layout::Layout;
 use crate::model::Workbook;
@@ -24,8 +25,8 @@ use crate::sheets::{AuditInput, Carried, Meta, SheetNames, Sibling};
 use crate::shelf::sha256;
 use crate::valuation::value;
 
-use super::basis::{plan_basis, require_basis, state};
-use super::{FillRequest, not_valued};
+use super::basis::{plan_basis, plan_settings, require_basis, state};
+use super::{FillRequest, bridge, not_valued};
 
 /// What every appraisal of a workbook is filled with.
 pub(super) struct Run<'a> {
@@ -45,6 +46,8 @@ pub(super) struct Work {
     pub outcomes: Vec<ChoiceOutcome>,
     pub companions: Vec<Option<Companion>>,
     pub sensitivity: Sensitivity,
+    /// From what each option's cells held to how it stands now.
+    bridges: Vec<Bridge>,
     /// Its own sheets.
     pub names: SheetNames,
     pub layout: Layout,
@@ -75,13 +78,14 @@ impl Work {
         let roles = &request.roles;
         // A basis given on the command line stands in where the workbook has none; where it has one, the cell is kept so
         // that the new basis can be written into it.
-        let mut appraisal = resolve(package, book, &Options { roles, basis: stated, plan: part })?;
+        let (base, prices) = (request.base.as_deref(), request.prices.as_deref());
+        let mut appraisal =
+            resolve(package, book, &Options { roles, basis: stated, base, prices, plan: part })?;
         let mut problems = std::mem::take(&mut appraisal.problems);
         // What the workbook itself declares, where it does.
-        let declared = match stated {
-            Some(_) => resolve(package, book, &Options { roles, basis: None, plan: part }).ok(),
-            None => None,
-        };
+        let own = Options { roles, plan: part, ..Options::default() };
+        let told = stated.is_some() || base.is_some() || prices.is_some();
+        let declared = if told { resolve(package, book, &own).ok() } else { None };
         if let Some((old, _)) = &request.replace {
             require_basis(&appraisal, declared.as_ref(), old, catalogue)?;
         }
@@ -90,6 +94,12 @@ impl Work {
         let companions = companions(&appraisal, &outcomes, catalogue, &mut problems);
         let sensitivity = sensitivity(&appraisal, &outcomes, &request.against, catalogue)?;
         problems.extend(sensitivity.comparison.problems.iter().cloned());
+        let elsewhere = match (base.or(prices), stated) {
+            (Some(_), Some(_)) => resolve(package, book, &Options { base, prices, ..own }).ok(),
+            _ => None,
+        };
+        let moved = if stated.is_none() { Some(&appraisal) } else { elsewhere.as_ref() };
+        let bridges = bridge::bridges(&appraisal, &outcomes, declared.as_ref(), moved, told, catalogue);
         let name = part.and_then(|part| part.appraisal.clone());
         let names = SheetNames::choose_for(name.as_deref(), taken);
         let layout = Layout::new(&appraisal, &outcomes, &names);
@@ -105,6 +115,7 @@ impl Work {
             outcomes,
             companions,
             sensitivity,
+            bridges,
             names,
             layout,
             plan: Plan::default(),
@@ -131,6 +142,7 @@ impl Work {
         if let Some(basis) = stated(run.request) {
             plan_basis(&mut plan, run.package, run.book, &self.appraisal, &self.outcomes, basis)?;
         }
+        plan_settings(&mut plan, run, &self.appraisal)?;
         Ok(plan)
     }
 
@@ -173,6 +185,9 @@ impl Work {
         }
         for (option, declared) in options.iter_mut().zip(&self.declared) {
             option.declared.clone_from(declared);
+        }
+        for (option, bridge) in options.iter_mut().zip(&self.bridges) {
+            option.bridge = *bridge;
         }
         options
     }
@@ -249,7 +264,7 @@ fn meta(run: &Run<'_>, outcomes: &[ChoiceOutcome], appraisal: Option<&str>) -> M
     let Run { package, request, catalogue, .. } = *run;
     Meta {
         input_name: package.file_name().to_owned(),
-        input_sha256: sha256(package.bytes()),
+        input_sha256: package.sha256(),
         basis_sha256: basis_sha256(outcomes.iter()),
         plan: request.plan.as_ref().map(|plan| (plan.name().to_owned(), plan.sha256())),
         appraisal: appraisal.map(str::to_owned),

@@ -1,13 +1,20 @@
 //! From names and `--role` to ranges: what each role refers to, and why some names cannot be used.
 
+use crate::formulas::absolute;
 use crate::model::DefinedName;
 use crate::planfile::{Part, Planned, Says};
 use crate::problem::{Place, Problem};
 use crate::reading::{MAX_CELLS, Value};
-use crate::references::{Cell, MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange};
+use crate::references::{
+    Cell, MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange, parse_target, quote_sheet,
+};
 use crate::roles::{self, Role, RoleName, Way};
 
+use super::dynamic::cells_now;
 use super::{Checked, Context};
+
+/// Names of tables or columns that a hint lists, at most.
+const SHOWN: usize = 12;
 
 /// A role with its cells.
 #[derive(Clone, Debug, PartialEq)]
@@ -48,17 +55,29 @@ impl Named {
         }
     }
 
+    /// Stated by the command line: a number where the text is one.
+    pub(super) fn told(role: Role, from: &str, text: &str) -> Self {
+        let text = text.trim();
+        let value = text.parse().map_or_else(|_| Value::Text(text.to_owned()), Value::Number);
+        let name = RoleName { role, stream: None, option: None };
+        Named { name, from: from.to_owned(), at: nowhere(), scope: None, stated: Some(value), line: None }
+    }
+
     /// Stated by a plan in no cell.
     fn without_cell(planned: &Planned, value: Value) -> Self {
-        let at = SheetRange::new("", Range::cell(Cell::new(0, 0)));
         let (name, from) = (planned.name.clone(), planned.from.clone());
-        Named { name, from, at, scope: None, stated: Some(value), line: Some(planned.line) }
+        Named { name, from, at: nowhere(), scope: None, stated: Some(value), line: Some(planned.line) }
     }
 
     /// More cells than are read as one range.
     pub(super) fn too_large(&self) -> bool {
         self.at.range.len() > MAX_CELLS
     }
+}
+
+/// The place of what is stated in no cell.
+fn nowhere() -> SheetRange {
+    SheetRange::new("", Range::cell(Cell::new(0, 0)))
 }
 
 /// Every role of the workbook: those of the command line, those of the plan that it does not give, and the names that
@@ -194,7 +213,7 @@ pub(super) fn held(context: &mut Context, named: &Named) -> String {
     }
 }
 
-fn from_plan(context: &Context, planned: &Planned) -> Checked<Named> {
+fn from_plan(context: &mut Context, planned: &Planned) -> Checked<Named> {
     let (name, from) = (planned.name.clone(), planned.from.clone());
     match &planned.says {
         Says::Value(value) => Ok(Named::without_cell(planned, value.clone())),
@@ -210,7 +229,7 @@ fn from_plan(context: &Context, planned: &Planned) -> Checked<Named> {
     }
 }
 
-fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Named> {
+fn from_command_line(context: &mut Context, role: &str, range: &str) -> Checked<Named> {
     let from = format!("--role {role}");
     let place = Place::name(&from);
     let name = roles::parse_role(role).map_err(|slip| {
@@ -223,8 +242,9 @@ fn from_command_line(context: &Context, role: &str, range: &str) -> Checked<Name
     Ok(Named { name, from, at: located(context, place, range)?, scope: None, stated: None, line: None })
 }
 
-/// The cells that a text such as `Sheet1!C7:F7`, or a defined name, stands for; `place` is where the text comes from.
-pub(super) fn located(context: &Context, place: Place, range: &str) -> Checked<SheetRange> {
+/// The cells that a text such as `Sheet1!C7:F7`, `Table1[Works]`, or a defined name, stands for; `place` is where the text
+/// comes from.
+pub(super) fn located(context: &mut Context, place: Place, range: &str) -> Checked<SheetRange> {
     if let Ok(at) = range.parse::<SheetRange>()
         && let Some(sheet) = context.book.sheets.iter().find(|sheet| same_text(&sheet.name, &at.sheet))
     {
@@ -242,16 +262,23 @@ pub(super) fn located(context: &Context, place: Place, range: &str) -> Checked<S
                 _ => false,
             }
     });
-    let Some(defined) = defined else {
-        return Err(Problem::error(
+    if let Some(defined) = defined {
+        return cells(context, defined);
+    }
+    match parse_target(range) {
+        Ok(NameTarget::Table { table, part }) => table_cells(context, place, &table, &part),
+        Ok(NameTarget::Formula(text)) if context.book.find_table(&text).is_some() => {
+            table_cells(context, place, &text, "")
+        }
+        Ok(NameTarget::Formula(text)) if text.contains('(') => Err(changing(context, place, &text).into()),
+        _ => Err(Problem::error(
             "role-range",
             place,
-            format!("`{range}` is neither cells of this workbook nor one of its names"),
+            format!("`{range}` is neither cells of this workbook nor one of its names or tables"),
         )
-        .hint("write the cells as Sheet1!C7:F7, or 'My sheet'!C7:F7")
-        .into());
-    };
-    cells(context, defined)
+        .hint("write the cells as Sheet1!C7:F7, 'My sheet'!C7:F7 or Table1[Works]")
+        .into()),
+    }
 }
 
 fn same_text(a: &str, b: &str) -> bool {
@@ -259,7 +286,7 @@ fn same_text(a: &str, b: &str) -> bool {
 }
 
 /// The one rectangle a name refers to, or why it has none.
-pub(super) fn cells(context: &Context, defined: &DefinedName) -> Checked<SheetRange> {
+pub(super) fn cells(context: &mut Context, defined: &DefinedName) -> Checked<SheetRange> {
     let refuse = |code, message: String, hint: &str| {
         Err(Problem::error(code, Place::name(&defined.name), message).hint(hint).into())
     };
@@ -276,11 +303,7 @@ pub(super) fn cells(context: &Context, defined: &DefinedName) -> Checked<SheetRa
             format!("is the constant {constant:?}, and cells are needed"),
             "enter it in a cell and let the name refer to that cell",
         ),
-        NameTarget::Formula(text) => refuse(
-            "name-dynamic",
-            format!("is the formula `{}`, whose cells may change", super::cells::shown(&text)),
-            again,
-        ),
+        NameTarget::Formula(text) => Err(changing(context, Place::name(&defined.name), &text).into()),
         NameTarget::Relative => {
             refuse("name-relative", "refers to other cells from every cell that uses it".to_owned(), again)
         }
@@ -297,13 +320,74 @@ pub(super) fn cells(context: &Context, defined: &DefinedName) -> Checked<SheetRa
             format!("refers to the sheet `{sheet}`, which does not exist"),
             again,
         ),
-        NameTarget::Table { table, .. } => refuse(
-            "name-table",
-            format!("refers to part of the table `{table}`, which is not read yet"),
-            again,
-        ),
+        NameTarget::Table { table, part } => table_cells(context, Place::name(&defined.name), &table, &part),
         NameTarget::ThreeD => refuse("name-sheets", "refers to several sheets at once".to_owned(), again),
     }
+}
+
+/// A formula that gives cells is refused, as it may give others tomorrow, with the cells that it gives today.
+fn changing(context: &mut Context, place: Place, text: &str) -> Problem {
+    let message = format!("is the formula `{}`, whose cells may change", super::cells::shown(text));
+    let role = place.name.clone().unwrap_or_default();
+    match cells_now(context, text) {
+        Some(at) => {
+            let address = format!("{}!{}", quote_sheet(&at.sheet), absolute(at.range));
+            let hint = match role.strip_prefix("--role ") {
+                Some(role) => format!("--role {role}={at}, the cells that it gives now"),
+                None => format!("let {role} refer to {address}, the cells that it gives now"),
+            };
+            Problem::error("name-dynamic", place, message).hint(hint)
+        }
+        None => Problem::error("name-dynamic", place, message)
+            .hint("let the name refer to one range of cells with $ signs, such as Sheet1!$C$7:$F$7"),
+    }
+}
+
+/// The cells of a structured reference, such as `Table1[Works]` or `Table1[[#Headers],[#Data],[Works]]`.
+fn table_cells(context: &Context, place: Place, name: &str, part: &str) -> Checked<SheetRange> {
+    let wrong = |message: String, hint: String| {
+        Err(Problem::error("name-table", place.clone(), message).hint(hint).into())
+    };
+    let Some(table) = context.book.find_table(name) else {
+        let tables: Vec<String> = context.book.tables.iter().map(|table| table.name.clone()).collect();
+        let hint = match tables.as_slice() {
+            [] => "the workbook has no tables: name cells, such as Sheet1!$C$7:$C$20".to_owned(),
+            tables => format!("its tables are {}", listed(tables)),
+        };
+        return wrong(format!("refers to the table `{name}`, which the workbook does not have"), hint);
+    };
+    if let Some(range) = table.cells(part, None) {
+        return Ok(SheetRange { sheet: context.book.sheets[table.sheet].name.clone(), range });
+    }
+    let shown = super::cells::shown(part);
+    let lower = part.to_lowercase();
+    if part.trim_start().starts_with('@') || lower.contains("#this row") {
+        let column = table.columns.first().map_or("Works", String::as_str);
+        return wrong(
+            format!("refers to `{name}[{shown}]`, another row of the table from every cell that uses it"),
+            format!("refer to a whole column of the table, such as {name}[{column}], or to one cell"),
+        );
+    }
+    for (rows, word, has) in
+        [("headers", "headings", table.header_rows > 0), ("totals", "totals", table.totals_rows > 0)]
+    {
+        if lower.contains(&format!("#{rows}")) && !has {
+            return wrong(
+                format!("refers to `{name}[{shown}]`, and the table has no row of {word}"),
+                format!("show the row of {word}, or name cells of the table's body"),
+            );
+        }
+    }
+    wrong(
+        format!("refers to `{name}[{shown}]`, which is no part of the table"),
+        format!("its columns are {}", listed(&table.columns)),
+    )
+}
+
+/// Names in one phrase, the first of many.
+fn listed(names: &[String]) -> String {
+    let more = if names.len() > SHOWN { ", ..." } else { "" };
+    format!("{}{more}", names.iter().take(SHOWN).map(String::as_str).collect::<Vec<_>>().join(", "))
 }
 
 /// A name on exactly one merged area means its upper left cell, the only one that holds anything.

@@ -5,6 +5,7 @@ mod cells;
 mod choices;
 mod counted;
 mod coverage;
+mod dynamic;
 mod find;
 mod groups;
 mod prices;
@@ -41,6 +42,10 @@ pub struct Options<'a> {
     pub roles: &'a [(String, String)],
     /// `--basis`: beats the workbook's.
     pub basis: Option<&'a str>,
+    /// `--base`: beats the workbook's.
+    pub base: Option<&'a str>,
+    /// `--prices`: beats the workbook's price basis.
+    pub prices: Option<&'a str>,
     /// What a plan says: it beats names, and the command line beats it.
     pub plan: Option<&'a Part>,
 }
@@ -72,7 +77,7 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
         return Err(context.ended());
     }
     let split = groups::split(&mut context, named);
-    let built = choices::build(&mut context, &split, options.basis);
+    let built = choices::build(&mut context, &split, options);
     if context.failed() {
         return Err(context.ended());
     }
@@ -81,9 +86,9 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
         return Err(context.ended());
     }
     let problems = context.sorted();
-    let choices::Built { axes, choices, baseline } = built;
+    let choices::Built { axes, choices, baseline, decide } = built;
     let settings = std::mem::take(&mut context.settings).into_values().collect();
-    Ok(Appraisal { axes, choices, baseline, settings, coverage, problems, date1904: book.date1904 })
+    Ok(Appraisal { axes, choices, baseline, decide, settings, coverage, problems, date1904: book.date1904 })
 }
 
 /// What every step needs: the workbook, its cells, and the list of what was found wrong.

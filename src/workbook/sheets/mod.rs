@@ -140,6 +140,7 @@ impl Carried {
         match &self.content {
             Content::Text(text) => sheet.text(row, col, self.style, text),
             Content::Number(x) => sheet.number(row, col, self.style, *x),
+            Content::Logical(truth) => sheet.logical(row, col, self.style, *truth),
             Content::Formula(text, result) => sheet.formula(row, col, self.style, text, result.clone()),
         }
     }

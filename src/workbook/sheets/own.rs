@@ -116,6 +116,7 @@ pub(super) fn marks(sheet: &Sheet, appraisal: Option<&str>) -> Vec<NewName> {
         .filter_map(|(cell, content)| match content {
             Content::Text(text) => (!text.is_empty()).then(|| (cell, text_mark(text))),
             Content::Number(number) => Some((cell, number_mark(*number))),
+            Content::Logical(_) => None,
             Content::Formula(..) => Some((cell, FORMULA_MARK.to_owned())),
         })
         .collect();
