@@ -27,6 +27,7 @@ mod roles;
 mod samples;
 mod scenario;
 mod sensitivity;
+mod shapes;
 mod sheets;
 mod small;
 mod stale;

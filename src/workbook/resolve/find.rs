@@ -4,11 +4,17 @@ use crate::formulas::absolute;
 use crate::model::DefinedName;
 use crate::problem::{Place, Problem};
 use crate::reading::MAX_CELLS;
-use crate::references::{MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange, parse_target, quote_sheet};
+use crate::references::{
+    Apart, Area, MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange, Token, parse_target, quote_sheet,
+    tokens,
+};
 use crate::roles::{self, Role, RoleName, Way};
 
 use super::dynamic::cells_now;
 use super::{Checked, Context};
+
+/// Pieces of one role, at most: formulas have to hold an address of each.
+const MAX_PIECES: usize = 100;
 
 /// Names of tables or columns that a hint lists, at most.
 const SHOWN: usize = 12;
@@ -20,8 +26,10 @@ pub(super) struct Named {
     pub name: RoleName,
     /// The defined name as written, or `--role cost_works`.
     pub from: String,
-    /// Its cells.
+    /// Its cells; the rectangle around them where they come in pieces.
     pub at: SheetRange,
+    /// The same along the years, in one piece or several.
+    pub area: Area,
     /// The sheet that the name is scoped to.
     pub scope: Option<String>,
 }
@@ -62,8 +70,9 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
             continue;
         }
         match cells(context, defined) {
-            Ok(at) => {
-                found.push(Named { name, from: defined.name.clone(), at, scope: scope(context, defined) })
+            Ok(area) => {
+                let (from, scope) = (defined.name.clone(), scope(context, defined));
+                found.push(Named { name, from, at: area.hull(), area, scope });
             }
             Err(problem) => context.report(*problem),
         }
@@ -71,7 +80,7 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
     let mut kept = Vec::new();
     for mut named in found {
         shrink_to_merged(context, &mut named);
-        match whole(&named) {
+        match in_pieces(&named).or_else(|| whole(&named)) {
             Some(problem) => context.report(problem),
             None => kept.push(named),
         }
@@ -114,16 +123,20 @@ fn from_command_line(context: &mut Context, role: &str, range: &str) -> Checked<
     if name.role.info().way == Way::Own {
         return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given").into());
     }
-    Ok(Named { name, from, at: located(context, place, range)?, scope: None })
+    let area = located(context, place, range)?;
+    Ok(Named { name, from, at: area.hull(), area, scope: None })
 }
 
 /// The cells that a text such as `Sheet1!C7:F7`, `Table1[Works]`, or a defined name, stands for; `place` is where the text
 /// comes from.
-pub(super) fn located(context: &mut Context, place: Place, range: &str) -> Checked<SheetRange> {
+pub(super) fn located(context: &mut Context, place: Place, range: &str) -> Checked<Area> {
     if let Ok(at) = range.parse::<SheetRange>()
         && let Some(sheet) = context.book.sheets.iter().find(|sheet| same_text(&sheet.name, &at.sheet))
     {
-        return Ok(SheetRange { sheet: sheet.name.clone(), ..at });
+        return Ok(SheetRange { sheet: sheet.name.clone(), ..at }.into());
+    }
+    if let Some(pieces) = pieces(context, range) {
+        return joined(place, &pieces);
     }
     let (sheet, wanted) = match range.rsplit_once('!') {
         Some((sheet, wanted)) => (Some(sheet.trim_matches('\'').replace("''", "'")), wanted),
@@ -160,19 +173,81 @@ fn same_text(a: &str, b: &str) -> bool {
     a.to_lowercase() == b.to_lowercase()
 }
 
-/// The one rectangle a name refers to, or why it has none.
-pub(super) fn cells(context: &mut Context, defined: &DefinedName) -> Checked<SheetRange> {
+/// Ranges between commas, such as `Plan!C4:M4,P4:Z4`: a sheet counts until another is named.
+fn pieces(context: &Context, text: &str) -> Option<Vec<SheetRange>> {
+    let mut pieces: Vec<SheetRange> = Vec::new();
+    for spanned in tokens(text) {
+        match spanned.token {
+            Token::Ref(reference) => {
+                let sheet = match &reference.sheet {
+                    Some(sheets) if sheets.is_external() || sheets.last.is_some() => return None,
+                    Some(sheets) => {
+                        context.book.sheets[context.book.sheet_index(&sheets.first)?].name.clone()
+                    }
+                    None => pieces.last()?.sheet.clone(),
+                };
+                pieces.push(SheetRange { sheet, range: reference.range() });
+            }
+            Token::Operator("," | "~") | Token::Space => {}
+            _ => return None,
+        }
+    }
+    (pieces.len() > 1).then_some(pieces)
+}
+
+/// Pieces of one row or column as one area, or why they are none.
+fn joined(place: Place, pieces: &[SheetRange]) -> Checked<Area> {
+    if pieces.len() > MAX_PIECES {
+        let message = format!("refers to {} ranges, allowed {MAX_PIECES}", pieces.len());
+        return Err(Problem::error("name-union", place, message)
+            .hint("put the years side by side on a sheet of their own, and name that")
+            .into());
+    }
+    Area::join(pieces).map_err(|apart| {
+        let why = match apart {
+            Apart::Sheets => "of several sheets, and the cells of a role stand on one",
+            Apart::Lines => "that lie neither in one row nor in one column",
+            Apart::Overlap => "that share cells",
+        };
+        Problem::error("name-union", place, format!("refers to {} ranges {why}", pieces.len()))
+            .hint("name pieces of one row or of one column; give each other row its own stream")
+            .into()
+    })
+}
+
+/// Pieces where one range is needed.
+fn in_pieces(named: &Named) -> Option<Problem> {
+    let role = named.name.role;
+    let along = matches!(
+        role,
+        Role::Years
+            | Role::Offsets
+            | Role::Cost
+            | Role::Benefit
+            | Role::Flow
+            | Role::Damage
+            | Role::Effect
+            | Role::Consumption
+            | Role::Factor
+            | Role::Pv
+            | Role::Rates
+    );
+    (!along && named.area.parts().len() > 1).then(|| {
+        let message = format!("`{}` comes in {} pieces, and one range is needed", role.word(), named.area.parts().len());
+        Problem::error("name-union", named.place(), message)
+            .hint("name one range; only years, offsets, single streams and what is filled along them may come in pieces")
+    })
+}
+
+/// The cells a name refers to, or why it has none.
+pub(super) fn cells(context: &mut Context, defined: &DefinedName) -> Checked<Area> {
     let refuse = |code, message: String, hint: &str| {
         Err(Problem::error(code, Place::name(&defined.name), message).hint(hint).into())
     };
     let again = "let the name refer to one range of cells with $ signs, such as Sheet1!$C$7:$F$7";
     match context.book.resolve(defined) {
-        NameTarget::Cells(at) => Ok(at),
-        NameTarget::Union(parts) => refuse(
-            "name-union",
-            format!("refers to {} separate ranges, which are not joined", parts.len()),
-            "name one range; give each part its own stream, or put the cells side by side",
-        ),
+        NameTarget::Cells(at) => Ok(at.into()),
+        NameTarget::Union(pieces) => joined(Place::name(&defined.name), &pieces),
         NameTarget::Constant(constant) => refuse(
             "name-constant",
             format!("is the constant {constant:?}, and cells are needed"),
@@ -219,7 +294,7 @@ fn changing(context: &mut Context, place: Place, text: &str) -> Problem {
 }
 
 /// The cells of a structured reference, such as `Table1[Works]` or `Table1[[#Headers],[#Data],[Works]]`.
-fn table_cells(context: &Context, place: Place, name: &str, part: &str) -> Checked<SheetRange> {
+fn table_cells(context: &Context, place: Place, name: &str, part: &str) -> Checked<Area> {
     let wrong = |message: String, hint: String| {
         Err(Problem::error("name-table", place.clone(), message).hint(hint).into())
     };
@@ -232,7 +307,7 @@ fn table_cells(context: &Context, place: Place, name: &str, part: &str) -> Check
         return wrong(format!("refers to the table `{name}`, which the workbook does not have"), hint);
     };
     if let Some(range) = table.cells(part, None) {
-        return Ok(SheetRange { sheet: context.book.sheets[table.sheet].name.clone(), range });
+        return Ok(SheetRange { sheet: context.book.sheets[table.sheet].name.clone(), range }.into());
     }
     let shown = super::cells::shown(part);
     let lower = part.to_lowercase();
@@ -273,6 +348,7 @@ pub(super) fn shrink_to_merged(context: &mut Context, named: &mut Named) {
     }
     if context.facts(&named.at.sheet).is_some_and(|facts| facts.merged.contains(&named.at.range)) {
         named.at.range.last = named.at.range.first;
+        named.area = named.at.clone().into();
     }
 }
 

@@ -25,8 +25,8 @@ use crate::appraisal::{Appraisal, Setting};
 use crate::model::{SheetFacts, Workbook};
 use crate::package::Package;
 use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
-use crate::reading::{Grid, Sheets};
-use crate::references::{Cell, Range, SheetRange};
+use crate::reading::{Grid, ReadCell, Sheets};
+use crate::references::{Area, Cell, Range, SheetRange};
 
 pub(crate) use counted::sum_of;
 pub use report::{Found, NamesReport, names};
@@ -57,7 +57,7 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
     let mut context = Context::open(package, book)?;
     let named = find::find(&mut context, options.roles);
     let ranges: Vec<SheetRange> =
-        named.iter().filter(|named| !named.too_large()).map(|named| named.at.clone()).collect();
+        named.iter().filter(|named| !named.too_large()).flat_map(|named| named.area.pieces()).collect();
     if let Err(error) = context.sheets.load(&ranges) {
         context.problems.extend(error.problems().iter().cloned());
         return Err(context.ended());
@@ -130,6 +130,16 @@ impl<'a> Context<'a> {
                 None
             }
         }
+    }
+
+    /// The cells of an area in order, likewise.
+    fn along(&mut self, area: &Area) -> Option<Vec<(Cell, ReadCell)>> {
+        let mut cells = Vec::new();
+        for piece in area.pieces() {
+            let grid = self.grid(&piece)?;
+            cells.extend(grid.iter().map(|(cell, content)| (cell, content.clone())));
+        }
+        Some(cells)
     }
 
     fn failed(&self) -> bool {
