@@ -3,6 +3,8 @@
 //! Names and figures are invented. What each comes to is worked out here in plain arithmetic.
 
 use std::collections::BTreeMap;
+use std::path::Path;
+use std::process::Command;
 
 use hence_core::Catalogue;
 use hence_workbook::fill::{FillRequest, fill};
@@ -15,12 +17,15 @@ use crate::libreoffice::office::{Recalculate, saved, soffice};
 use crate::libreoffice::{compare, found};
 use crate::own::only_the_input_differs;
 use crate::small::{Small, lines};
+use crate::tools;
 
 /// A workbook, and what cells of it come to when it is filled: `Plan!B9`, number.
 struct Shape {
     name: &'static str,
     bytes: Vec<u8>,
     expected: Vec<(String, f64)>,
+    /// Formulas over filled cells, which have no result until LibreOffice computes it.
+    after: Vec<(String, f64)>,
 }
 
 /// Flat 3.5%, flows and base at the ends of their years.
@@ -48,6 +53,9 @@ fn filled(shape: &Shape) -> Vec<u8> {
         let Stored::Number(held) = cell_of(&stored, at) else { panic!("{name}: {at} holds no number") };
         assert!((held - x).abs() <= 1e-9 * x.abs(), "{name}: {at} holds {held}, expected {x}");
     }
+    for (at, _) in &shape.after {
+        assert_eq!(cell_of(&stored, at), Stored::Nothing, "{name}: {at} rests on filled cells");
+    }
     assert_eq!(found(&first.bytes), [""; 0], "{name}");
     let again = Package::from_bytes("book.xlsx", first.bytes.clone()).expect("a package");
     let second = fill(&again, &request, &catalogue).unwrap_or_else(|error| panic!("{name}: {error}"));
@@ -68,7 +76,7 @@ fn every_shape_comes_to_what_it_should_and_again_in_libreoffice() {
         assert_eq!(differ, Vec::<String>::new(), "{name}");
         assert_eq!(verdict(after), VERDICT_AGREES, "{name}");
         assert_eq!(found(after), [""; 0], "{name} as LibreOffice saves it");
-        for (at, x) in &shape.expected {
+        for (at, x) in shape.expected.iter().chain(&shape.after) {
             let Stored::Number(held) = cell_of(&cells(after), at) else { panic!("{name}: {at}") };
             assert!((held - x).abs() <= 1e-9 * x.abs(), "{name}: {at} became {held}, expected {x}");
         }
@@ -76,7 +84,46 @@ fn every_shape_comes_to_what_it_should_and_again_in_libreoffice() {
 }
 
 fn shapes() -> Vec<Shape> {
-    [unions(), pieces_that_differ(), unions_down()].into()
+    let mut all = vec![unions(), pieces_that_differ(), unions_down()];
+    all.extend(of_openpyxl());
+    all
+}
+
+/// Shapes that openpyxl saves: a table, and days counted from 1904.
+fn of_openpyxl() -> Vec<Shape> {
+    let Some(python) = tools::python("openpyxl") else { return Vec::new() };
+    let folder = tempfile::tempdir().expect("a folder");
+    let script = Path::new(env!("CARGO_MANIFEST_DIR")).join("../../tests/workbook/make_shapes.py");
+    let output = Command::new(python).arg(script).arg(folder.path()).output().expect("Python runs");
+    assert!(output.status.success(), "{}", String::from_utf8_lossy(&output.stderr));
+    let bytes = |name: &str| std::fs::read(folder.path().join(name)).expect("a workbook");
+    let works = |i: i32| f64::from(100 - 10 * i) * factor(f64::from(i));
+    let gain = |i: i32| f64::from(60 + 5 * i) * factor(f64::from(i));
+    let sum = |of: &dyn Fn(i32) -> f64| (0..6).map(of).sum::<f64>();
+    // From 1 April 2026: 183 of 365 days, one year, two years.
+    let half = factor(183.0 / 365.0);
+    let table = Shape {
+        name: "tables",
+        bytes: bytes("tables.xlsx"),
+        expected: vec![at("B3", sum(&gain) - sum(&works)), at("D11", factor(5.0)), at("E8", works(2))],
+        after: vec![
+            at("F8", works(2) / 10.0),
+            at("E12", sum(&works)),
+            at("H2", sum(&works)),
+            at("I2", factor(5.0)),
+        ],
+    };
+    let dated = Shape {
+        name: "from-1904",
+        bytes: bytes("from-1904.xlsx"),
+        expected: vec![
+            at("C6", half),
+            at("D6", factor(1.0)),
+            at("B7", 100.0 + 50.0 * half + 25.0 * factor(1.0) + 5.0 * factor(2.0)),
+        ],
+        after: Vec::new(),
+    };
+    vec![table, dated]
 }
 
 fn at(cell: &str, x: f64) -> (String, f64) {
@@ -119,6 +166,7 @@ fn unions() -> Shape {
             at("B11", gain),
             at("B12", gain - costs),
         ],
+        after: vec![at("D8", 100.0 + 50.0 * factor(1.0))],
     }
 }
 
@@ -155,6 +203,7 @@ fn pieces_that_differ() -> Shape {
             at("B9", (0..4).map(net).sum()),
             at("B10", (0..4).map(|i| grown(i) * factor(i as f64)).sum()),
         ],
+        after: Vec::new(),
     }
 }
 
@@ -179,5 +228,6 @@ fn unions_down() -> Shape {
         name: "unions-down",
         bytes: small.bytes(),
         expected: vec![at("D7", factor(2.0)), at("F1", 100.0 + 50.0 * factor(1.0) + 25.0 * factor(2.0))],
+        after: Vec::new(),
     }
 }
