@@ -58,6 +58,12 @@ impl Area {
         Ok(Area { sheet: first.sheet.clone(), parts })
     }
 
+    /// The same cells of another sheet.
+    #[must_use]
+    pub fn on_sheet(&self, sheet: &str) -> Area {
+        Area { sheet: sheet.to_owned(), parts: self.parts.clone() }
+    }
+
     /// Its pieces in order.
     pub fn parts(&self) -> &[Range] {
         &self.parts

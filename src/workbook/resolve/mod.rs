@@ -1,5 +1,6 @@
 //! From defined names to an appraisal: options, years, streams and targets, each problem with its cell.
 
+mod alike;
 mod blocks;
 mod cells;
 mod choices;
@@ -62,11 +63,13 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
         context.problems.extend(error.problems().iter().cloned());
         return Err(context.ended());
     }
+    let sheets: BTreeSet<String> = named.iter().map(|named| named.at.sheet.clone()).collect();
     let split = groups::split(&mut context, named);
     let built = choices::build(&mut context, &split, options.basis);
     if context.failed() {
         return Err(context.ended());
     }
+    alike::tell(&mut context, &built, &sheets);
     let coverage = coverage::coverage(&mut context, &built);
     if context.failed() {
         return Err(context.ended());
