@@ -5,7 +5,7 @@ use std::fmt;
 use serde::{Deserialize, Serialize};
 
 use crate::codes::CODES;
-use crate::references::{Range, quote_sheet};
+use crate::references::{Area, Range, quote_sheet};
 
 /// How bad a problem is.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
@@ -36,6 +36,11 @@ impl Place {
     /// Cells of a sheet.
     pub fn cells(sheet: &str, range: Range) -> Self {
         Place { sheet: Some(sheet.to_owned()), range: Some(range), ..Place::default() }
+    }
+
+    /// Cells along a row or column; the rectangle around them where they come in pieces.
+    pub fn area(at: &Area) -> Self {
+        Place::cells(&at.sheet, at.hull().range)
     }
 
     /// A defined name, where it has no cells to point at.

@@ -429,3 +429,46 @@ fn wrong_plans_are_explained_by_line_and_cell() {
     assert!(wrong.is_empty(), "otherwise:\n{wrong}");
     assert!(cases >= 10, "{cases}");
 }
+
+#[test]
+fn cells_in_pieces_and_columns_of_tables_are_given_like_any_others() {
+    let flows =
+        "A4: 'Year | 2025 | 2026 | 'Sum | 2027 | 2028\nA5: 'Works | 100 | 50 | 150 | 25 | 5\nA9: 'NPV |";
+    let pieces = Small::default().sheet("Flows", flows);
+    let plan = parsed(
+        "sheet = \"Flows\"\n[settings]\nbase = 2025\nbasis = 0.035\n[roles]\nyears = \"B4:C4,E4:F4\"\n\
+         cost_works = \"B5:C5, Flows!E5:F5\"\nnpv = \"B9\"\n",
+    );
+    let d = |t: i32| 1.035f64.powi(-t);
+    let npv = -100.0 - 50.0 * d(1) - 25.0 * d(2) - 5.0 * d(3);
+    let report = filled(&pieces.bytes(), Some(&plan)).report;
+    assert!((report.options[0].absolute.npv - npv).abs() < 1e-9);
+    assert_eq!(report.verdict, VERDICT_AGREES);
+
+    let table = "<table xmlns=\"http://schemas.openxmlformats.org/spreadsheetml/2006/main\" id=\"1\" name=\"Flows\" \
+                 displayName=\"Flows\" ref=\"A1:B5\"><autoFilter ref=\"A1:B5\"/><tableColumns count=\"2\">\
+                 <tableColumn id=\"1\" name=\"Year\"/><tableColumn id=\"2\" name=\"Works\"/></tableColumns></table>";
+    let down = Small::default()
+        .sheet(
+            "Site",
+            "A1: 'Year | 'Works\nA2: 2025 | 100\nA3: 2026 | 50\nA4: 2027 | 25\nA5: 2028 | 5\nD1: 'NPV |",
+        )
+        .after_cells("<tableParts count=\"1\"><tablePart r:id=\"rId1\"/></tableParts>")
+        .related("table", "tables/table1.xml", table);
+    let plan = parsed(
+        "[settings]\nbase = 2025\nbasis = 0.035\n[roles]\nyears = \"Flows[Year]\"\ncost_works = \"Flows[Works]\"\n\
+         npv = \"Site!E1\"\n",
+    );
+    let report = filled(&down.bytes(), Some(&plan)).report;
+    assert!((report.options[0].absolute.npv - npv).abs() < 1e-9);
+}
+
+#[test]
+fn sheets_of_other_appraisals_are_not_told_of_as_left_out() {
+    let (book, plan) = two();
+    let alike =
+        |report: &hence_workbook::report::Report| report.problems.iter().any(|p| p.code == "sheet-alike");
+    assert!(!alike(&filled(&book.bytes(), Some(&plan)).report));
+    let one = plan.only(Some("North".into()));
+    assert!(!alike(&filled(&book.bytes(), Some(&one)).report));
+}

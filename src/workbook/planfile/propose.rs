@@ -5,7 +5,7 @@ use crate::model::Workbook;
 use crate::package::Package;
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, Severity};
-use crate::references::{Range, SheetRange};
+use crate::references::{Area, Range, SheetRange};
 use crate::resolve::{Found, Options, names, resolve};
 use crate::roles::{PREFIX, Role, RoleName, key, parse_name};
 use crate::suggest::{Guess, slug, suggest};
@@ -68,7 +68,7 @@ pub fn propose(package: &Package) -> Result<Proposal> {
 /// Where no base was found, the first year stands in for it while the plan is tried.
 fn trial_base(lines: &[Line]) -> Option<Planned> {
     let years = lines.iter().find(|line| line.name.role == Role::Years)?;
-    let first = SheetRange { range: Range::cell(years.at.range.first), ..years.at.clone() };
+    let first = SheetRange::new(&years.at.sheet, Range::cell(years.at.nth(0)));
     let name = RoleName { role: Role::Base, stream: None, option: None };
     let none = !lines.iter().any(|line| line.name.role == Role::Base);
     none.then(|| Planned {
@@ -83,20 +83,19 @@ fn trial_base(lines: &[Line]) -> Option<Planned> {
 #[derive(Clone, Debug, PartialEq)]
 struct Line {
     name: RoleName,
-    at: SheetRange,
+    at: Area,
     why: String,
 }
 
 impl Line {
     fn guessed(guess: &Guess) -> Option<Self> {
         let name = parse_name(&guess.name)?.ok()?;
-        Some(Line { name, at: guess.at.clone(), why: guess.why.clone() })
+        Some(Line { name, at: guess.at.clone().into(), why: guess.why.clone() })
     }
 
     fn named(found: &Found) -> Option<Self> {
         let name = RoleName { option: found.option.clone(), ..parse_name(&found.name)?.ok()? };
-        let at = SheetRange { sheet: found.place.sheet.clone()?, range: found.place.range? };
-        Some(Line { name, at, why: format!("the name {}", found.name) })
+        Some(Line { name, at: found.at.clone()?, why: format!("the name {}", found.name) })
     }
 
     /// As the plan has it, its cells without a sheet where that is `home`.
@@ -108,8 +107,8 @@ impl Line {
 }
 
 /// Cells as text, without their sheet where that is `home`.
-fn cells(at: &SheetRange, home: Option<&str>) -> String {
-    if home == Some(&at.sheet) { at.range.to_string() } else { at.to_string() }
+fn cells(at: &Area, home: Option<&str>) -> String {
+    if home == Some(&at.sheet) { at.cells_text() } else { at.to_string() }
 }
 
 /// The one sheet that all are on.
@@ -131,8 +130,9 @@ impl Alike {
         self.sheets.first().is_some_and(|sheet| key(sheet) == key(&self.name))
     }
 
-    fn layout(&self) -> Vec<(Role, Option<String>, Range)> {
-        let about = |line: &Line| (line.name.role, line.name.stream.as_deref().map(key), line.at.range);
+    fn layout(&self) -> Vec<(Role, Option<String>, Vec<Range>)> {
+        let about =
+            |line: &Line| (line.name.role, line.name.stream.as_deref().map(key), line.at.parts().to_vec());
         self.lines.iter().map(about).collect()
     }
 }
@@ -168,7 +168,7 @@ struct Page<'a> {
     lines: Vec<Line>,
     options: Vec<Alike>,
     /// Rows of numbers along the years that no role names.
-    left: Vec<(String, SheetRange)>,
+    left: Vec<(String, Area)>,
 }
 
 impl<'a> Page<'a> {
@@ -205,7 +205,7 @@ impl<'a> Page<'a> {
                 text.push_str(&format!("# {word} = {}  # not found: {what}\n", quoted(&cells)));
             }
         }
-        let own = |at: &SheetRange| self.options.iter().any(|option| option.sheets.contains(&at.sheet));
+        let own = |at: &Area| self.options.iter().any(|option| option.sheets.contains(&at.sheet));
         self.add_left(&mut text, home, |at| !own(at));
         for option in &self.options {
             text.push_str("\n[[option]]\n");
@@ -230,7 +230,7 @@ impl<'a> Page<'a> {
     }
 
     /// Rows that no role names, to be taken in by those who know what they are.
-    fn add_left(&self, text: &mut String, home: Option<&str>, wanted: impl Fn(&SheetRange) -> bool) {
+    fn add_left(&self, text: &mut String, home: Option<&str>, wanted: impl Fn(&Area) -> bool) {
         for (heading, at) in self.left.iter().filter(|(_, at)| wanted(at)) {
             let heading = slug(heading);
             let stream = if heading.is_empty() { "name" } else { &heading };

@@ -258,8 +258,8 @@ fn check_flows(context: &mut Context, split: &Split, choices: &[Choice]) {
     let streams = || choices.iter().flat_map(|choice| &choice.streams);
     let entered = streams().any(|stream| {
         stream.residual.is_some()
-            || context.grid(&stream.at).is_some_and(|grid| {
-                grid.iter().any(|(_, cell)| cell.value != Value::Blank || cell.formula.is_some())
+            || context.along(&stream.at).is_some_and(|cells| {
+                cells.iter().any(|(_, cell)| cell.value != Value::Blank || cell.formula.is_some())
             })
     });
     if entered || context.failed() {

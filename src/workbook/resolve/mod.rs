@@ -1,5 +1,6 @@
 //! From defined names to an appraisal: options, years, streams and targets, each problem with its cell.
 
+mod alike;
 mod blocks;
 mod cells;
 mod choices;
@@ -26,8 +27,8 @@ use crate::model::{SheetFacts, Workbook};
 use crate::package::Package;
 use crate::planfile::Part;
 use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
-use crate::reading::{Grid, Sheets};
-use crate::references::{Cell, Range, SheetRange};
+use crate::reading::{Grid, ReadCell, Sheets};
+use crate::references::{Area, Cell, Range, SheetRange};
 use crate::roles::Role;
 
 pub(crate) use counted::sum_of;
@@ -71,16 +72,19 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
     }
     let named = find::find(&mut context, options.roles, options.plan);
     let ranges: Vec<SheetRange> =
-        named.iter().filter(|named| !named.too_large()).filter_map(find::Named::cells).collect();
+        named.iter().filter(|named| !named.too_large()).flat_map(find::Named::pieces).collect();
     if let Err(error) = context.sheets.load(&ranges) {
         context.problems.extend(error.problems().iter().cloned());
         return Err(context.ended());
     }
+    let mut sheets: BTreeSet<String> = named.iter().map(|named| named.at.sheet.clone()).collect();
+    sheets.extend(options.plan.iter().flat_map(|plan| plan.elsewhere.clone()));
     let split = groups::split(&mut context, named);
     let built = choices::build(&mut context, &split, options);
     if context.failed() {
         return Err(context.ended());
     }
+    alike::tell(&mut context, &built, &sheets);
     let coverage = coverage::coverage(&mut context, &built);
     if context.failed() {
         return Err(context.ended());
@@ -152,6 +156,16 @@ impl<'a> Context<'a> {
                 None
             }
         }
+    }
+
+    /// The cells of an area in order, likewise.
+    fn along(&mut self, area: &Area) -> Option<Vec<(Cell, ReadCell)>> {
+        let mut cells = Vec::new();
+        for piece in area.pieces() {
+            let grid = self.grid(&piece)?;
+            cells.extend(grid.iter().map(|(cell, content)| (cell, content.clone())));
+        }
+        Some(cells)
     }
 
     fn failed(&self) -> bool {
