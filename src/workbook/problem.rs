@@ -148,8 +148,9 @@ pub struct WorkbookError {
     problems: Vec<Problem>,
 }
 
-/// Codes of problems that are about files and places, not about what a workbook holds.
-const FILE_CODES: [&str; 4] = ["cannot-read", "cannot-write", "output-exists", "output-is-input"];
+/// Codes of problems that are about files and places, or about what is asked for, not about what a workbook holds.
+const FILE_CODES: [&str; 5] =
+    ["cannot-read", "cannot-write", "output-exists", "output-is-input", "plan-appraisal"];
 
 /// The result of a fallible function of this crate.
 pub type Result<T> = std::result::Result<T, WorkbookError>;
