@@ -1,7 +1,7 @@
 //! The one declaration of the command line: help, man page and completions derive from it.
 
 use std::ffi::{OsStr, OsString};
-use std::num::NonZeroUsize;
+use std::num::{NonZeroU64, NonZeroUsize};
 use std::path::PathBuf;
 
 use clap::{Args, CommandFactory, Parser, Subcommand, ValueEnum};
@@ -134,11 +134,11 @@ pub struct Overwrite {
 
 #[derive(Debug, Args)]
 pub struct Fill {
-    /// The workbooks (.xlsx, .xlsm); - reads one from standard input
-    #[arg(required = true, value_name = "BOOK")]
+    /// The workbooks (.xlsx, .xlsm), or folders to find them in; - reads one from standard input
+    #[arg(required = true, value_name = "BOOK|DIR")]
     pub books: Vec<PathBuf>,
     /// Where to write: a file when it ends in .xlsx or .xlsm (one workbook only), - for standard output, else a
-    /// folder
+    /// folder, with the same folders in it as in the one that is walked
     #[arg(long, value_name = "FILE|DIR")]
     pub out: Option<PathBuf>,
     /// Value on this rate line or schedule, and write it into the basis cell
@@ -147,6 +147,9 @@ pub struct Fill {
     /// Change the basis from OLD to NEW; a workbook on another basis is refused
     #[arg(long, value_name = "OLD=NEW", conflicts_with = "basis")]
     pub replace: Option<String>,
+    /// Have LibreOffice compute what the fill leaves without a result, so that previewers and scripts see numbers
+    #[arg(long)]
+    pub settle: bool,
     /// Value at this base (a year, a financial year or a date), and write it into the base cell
     #[arg(long, value_name = "YEAR")]
     pub base: Option<String>,
@@ -166,6 +169,24 @@ pub struct Fill {
     pub against: Against,
     #[command(flatten)]
     pub signature: Signature,
+    /// Write a workbook that says what moved and which decisions flipped, with a bridge for every option
+    #[arg(long, value_name = "FILE.xlsx")]
+    pub summary: Option<PathBuf>,
+    /// Write a line of JSON for each workbook, with hashes of input, output, basis and what was asked for
+    #[arg(long, value_name = "FILE")]
+    pub ledger: Option<PathBuf>,
+    /// Go on with a run that was stopped: keep the outputs that are as it would make them, make the others
+    #[arg(long)]
+    pub resume: bool,
+    /// Workbooks to fill at a time (else as many as the machine runs at once)
+    #[arg(long, value_name = "N")]
+    pub jobs: Option<NonZeroUsize>,
+    /// The most memory for one workbook, in MB (else 1024); not on Windows and macOS
+    #[arg(long, value_name = "MB")]
+    pub memory_limit: Option<NonZeroU64>,
+    /// The most time for one workbook, in seconds (else 600)
+    #[arg(long, value_name = "SECONDS")]
+    pub time_limit: Option<NonZeroU64>,
     #[command(flatten)]
     pub document: Document,
     #[command(flatten)]

@@ -1,13 +1,22 @@
 //! Where workbooks come from: files, or standard input for `-`.
 
 use std::io::Read;
-use std::path::Path;
+use std::path::{Path, PathBuf};
 
 use hence_workbook::package::{MAX_FILE, Package};
 use hence_workbook::problem::{Place, Problem, Result};
 
 /// What stands for standard input or output.
 pub const DASH: &str = "-";
+
+/// A workbook to be read.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Input {
+    /// The file.
+    pub path: PathBuf,
+    /// Where a folder was walked: the folders in it that lead to the file. None for a workbook that was named.
+    pub inside: Option<PathBuf>,
+}
 
 /// Whether a path stands for standard input or output.
 pub fn is_dash(path: &Path) -> bool {

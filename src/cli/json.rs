@@ -3,7 +3,8 @@
 use std::collections::BTreeMap;
 
 use hence_workbook::problem::{Problem, Severity};
-use hence_workbook::report::{Exact, OptionReport, Report, Status};
+use hence_workbook::report::{Exact, OptionReport, Status};
+use hence_workbook::shelf::Record;
 use serde::Serialize;
 
 #[derive(Serialize)]
@@ -102,14 +103,15 @@ impl From<&Problem> for Found {
 }
 
 impl FilledBook {
-    /// A workbook that was filled.
-    pub fn filled(input: String, output: String, report: &Report) -> Self {
+    /// A workbook of a run, filled or not.
+    pub fn of(record: &Record) -> Self {
         FilledBook {
-            input,
-            output: Some(output),
-            status: report.status(),
-            options: report.options.iter().map(FilledOption::from).collect(),
-            appraisals: report
+            input: record.input.clone(),
+            output: record.output.clone(),
+            status: record.status,
+            options: record.report.options.iter().map(FilledOption::from).collect(),
+            appraisals: record
+                .report
                 .appraisals
                 .iter()
                 .map(|appraisal| FilledAppraisal {
@@ -117,19 +119,7 @@ impl FilledBook {
                     verdict: appraisal.verdict.clone(),
                 })
                 .collect(),
-            problems: report.problems.iter().map(Found::from).collect(),
-        }
-    }
-
-    /// A workbook that was not.
-    pub fn failed(input: String, problems: &[Problem]) -> Self {
-        FilledBook {
-            input,
-            output: None,
-            status: Status::Failed,
-            options: Vec::new(),
-            appraisals: Vec::new(),
-            problems: problems.iter().map(Found::from).collect(),
+            problems: record.report.problems.iter().map(Found::from).collect(),
         }
     }
 }

@@ -48,7 +48,8 @@ fn word(severity: Severity) -> &'static str {
     }
 }
 
-fn line(file: &str, problem: &Problem, more: &str) -> String {
+/// One problem: file, place, what was found, the code; then what to do.
+pub fn line(file: &str, problem: &Problem, more: &str) -> String {
     let mut line = if problem.place == Place::default() {
         let named = problem.message.starts_with(file);
         let before = if named { String::new() } else { format!("{file}: ") };
@@ -148,6 +149,23 @@ fn options(options: &[OptionReport]) -> String {
         text.push_str(&details(option));
     }
     text
+}
+
+/// The report on one workbook of many: where it went, the verdict, and a line for each option.
+pub fn brief(input: &str, output: &str, report: &Report) -> String {
+    let mut text = format!("{input} -> {output}: {}\n", report.verdict);
+    let row = |option: &OptionReport| {
+        let totals = option.totals();
+        let ratio = totals.ratio.map_or_else(|| "-".into(), |ratio| format!("{ratio:.2}"));
+        let over = if option.increment.is_some() { " over the baseline" } else { "" };
+        vec![
+            format!("  {}", option.name),
+            format!("NPV{over} {}", money(totals.npv)),
+            format!("ratio {ratio}"),
+        ]
+    };
+    text.push_str(&table(&report.options.iter().map(row).collect::<Vec<_>>()));
+    escape(&text)
 }
 
 /// Rows that were left out of the appraisal, so that a forgotten benefit is seen.

@@ -16,15 +16,16 @@ use crate::graft::{Graft, graft};
 use crate::model::Workbook;
 use crate::own;
 use crate::package::{Changes, Package, may_write, same_file, write_atomically};
-use crate::patch::{CellWrite, patch_sheet};
+use crate::patch::{Cached, CellWrite, patch_sheet};
 use crate::plan::Stale;
 use crate::planfile::{Part, PlanFile};
 use crate::preflight::preflight;
-use crate::problem::{Place, Problem, Result, WorkbookError};
+use crate::problem::{Problem, Result, WorkbookError};
 use crate::references::{Cell, SheetRange};
 use crate::report::Report;
+use crate::settle;
 use crate::sheets::{self, Composed, Meta, VERDICT_AGREES};
-use crate::shelf::{Record, prepare, record_part, sealed};
+use crate::shelf::{Record, output_is_input, prepare, record_part, sealed};
 use crate::stale;
 use crate::verify::{Expected, verify};
 
@@ -51,6 +52,8 @@ pub struct FillRequest {
     pub replace_formulas: bool,
     /// Rate lines or ids of schedules to value it on besides, for the sensitivity sheet.
     pub against: Vec<String>,
+    /// LibreOffice computes what has no result, so that every formula of the output has one.
+    pub settle: bool,
     /// For the audit summary.
     pub as_of: Option<String>,
     /// For the audit summary.
@@ -69,6 +72,7 @@ impl Default for FillRequest {
             formulas: true,
             replace_formulas: false,
             against: Vec::new(),
+            settle: false,
             as_of: None,
             by: None,
         }
@@ -100,10 +104,7 @@ pub fn fill_file(
 ) -> Result<Report> {
     let package = Package::open(input)?;
     if same_file(input, output) {
-        let message = format!("the output {} is the input, which is never written", output.display());
-        return Err(Problem::error("output-is-input", Place::default(), message)
-            .hint("give --out another name")
-            .into());
+        return Err(output_is_input(output));
     }
     may_write(output, force)?;
     let filled = fill(&package, request, catalogue)?;
@@ -177,12 +178,48 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         patch(&mut changes, package, &book, &writes)?;
         bytes = package.write(&changes)?;
     }
-    let (report, meta) = (report(&works, built.verdicts), work::meta_of_all(&works));
-    let bytes = sealed(bytes, &Record::filled(&meta, &report))?;
-    changes.add.push((record_part().to_owned(), Vec::new()));
+    let (mut report, meta) = (report(&works, built.verdicts), work::meta_of_all(&works));
+    if !request.settle {
+        report.awaiting = awaiting(&writes);
+        let bytes = sealed(bytes, &Record::filled(&meta, &report))?;
+        changes.add.push((record_part().to_owned(), Vec::new()));
+        changes.forget_contents();
+        verify(
+            package,
+            &bytes,
+            &Expected { changes: &changes, writes: &writes, own_sheets: &grafted.sheets },
+        )?;
+        return Ok(Filled { bytes, report, meta });
+    }
     changes.forget_contents();
     verify(package, &bytes, &Expected { changes: &changes, writes: &writes, own_sheets: &grafted.sheets })?;
+    let bytes = settled(package.file_name(), bytes, &meta, &mut report)?;
     Ok(Filled { bytes, report, meta })
+}
+
+/// The output with a result in every formula, sealed; and a verdict that rested on such results as it is now.
+fn settled(name: &str, bytes: Vec<u8>, meta: &Meta, report: &mut Report) -> Result<Vec<u8>> {
+    let made = Package::from_bytes(name, bytes)?;
+    let book = Workbook::read(&made)?;
+    let writes = settle::settled(&made, &book)?;
+    settle::settle_verdicts(&book, &writes, report);
+    let mut changes = Changes::default();
+    patch(&mut changes, &made, &book, &writes)?;
+    let bytes = sealed(made.write(&changes)?, &Record::filled(meta, report))?;
+    changes.add.push((record_part().to_owned(), Vec::new()));
+    changes.forget_contents();
+    verify(&made, &bytes, &Expected { changes: &changes, writes: &writes, own_sheets: &[] })?;
+    Ok(bytes)
+}
+
+/// The formulas that have no result until a spreadsheet program opens the output, by sheet in words.
+fn awaiting(writes: &settle::Writes) -> Vec<String> {
+    let blank =
+        |write: &CellWrite| matches!(write, CellWrite::DropValue | CellWrite::Formula(_, Cached::None));
+    let cells = |cells: &BTreeMap<Cell, CellWrite>| -> Vec<Cell> {
+        cells.iter().filter(|(_, write)| blank(write)).map(|(cell, _)| *cell).collect()
+    };
+    writes.iter().filter_map(|(sheet, all)| settle::in_words(sheet, &cells(all))).collect()
 }
 
 /// Every appraisal, resolved, valued and decided.
@@ -248,6 +285,7 @@ fn report(works: &[Work], verdicts: Vec<String>) -> Report {
         filled: works.iter().map(|work| work.plan.filled).sum(),
         ticked: works.iter().map(|work| work.plan.ticked).sum(),
         not_valued: works.iter().flat_map(Work::not_valued).collect(),
+        awaiting: Vec::new(),
         verdict: sheets::overall(&all.collect::<Vec<_>>()),
     }
 }

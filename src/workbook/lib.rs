@@ -43,6 +43,7 @@ pub mod report;
 pub mod resolve;
 pub mod roles;
 pub mod schedules;
+pub mod settle;
 pub mod sheets;
 pub mod shelf;
 mod splice;

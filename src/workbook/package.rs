@@ -19,7 +19,8 @@ mod zip;
 
 pub use container::{MAX_ENTRIES, MAX_FILE, MAX_PART, MAX_RATIO, MAX_TOTAL, RATIO_FROM};
 pub use edit::{NewRelationship, edit_content_types, edit_relationships};
-pub use output::{Changes, may_write, same_file, write_atomically};
+pub(crate) use output::may_replace;
+pub use output::{Changes, Identity, Pending, clear_abandoned, may_write, same_file, write_atomically};
 pub use parts::{Relationship, relationships_part, resolve_target};
 
 pub(crate) use container::Inflated;
@@ -79,18 +80,28 @@ fn key(name: &str) -> String {
 impl Package {
     /// Reads a workbook file into memory and finds its parts. The file is opened for reading only.
     ///
-    /// **Errors**: `cannot-read`, `file-too-large`, and those of [`Package::from_bytes`].
+    /// **Errors**: those of [`Package::read`] and [`Package::from_bytes`].
     pub fn open(path: &Path) -> Result<Package> {
-        let name = path.file_name().unwrap_or(path.as_os_str()).to_string_lossy().into_owned();
+        Package::from_bytes(&Package::name_of(path), Package::read(path)?)
+    }
+
+    /// A file's name in a package, without folders.
+    pub(crate) fn name_of(path: &Path) -> String {
+        path.file_name().unwrap_or(path.as_os_str()).to_string_lossy().into_owned()
+    }
+
+    /// The bytes of a file, and one more than allowed of a file that is too large, whatever its length claims.
+    ///
+    /// **Errors**: `cannot-read`.
+    pub(crate) fn read(path: &Path) -> Result<Vec<u8>> {
         let failed = |e: std::io::Error| -> WorkbookError {
             Problem::error("cannot-read", Place::default(), format!("{} cannot be read: {e}", path.display()))
                 .into()
         };
         let file = std::fs::File::open(path).map_err(failed)?;
         let mut bytes = Vec::new();
-        // One byte more than allowed tells a file that is too large, whatever its length claims.
         file.take(MAX_FILE + 1).read_to_end(&mut bytes).map_err(failed)?;
-        Package::from_bytes(&name, bytes)
+        Ok(bytes)
     }
 
     /// A package from the bytes of a file; `name` is the file's name, without folders.

@@ -149,8 +149,8 @@ pub struct WorkbookError {
 }
 
 /// Codes of problems that are about files and places, or about what is asked for, not about what a workbook holds.
-const FILE_CODES: [&str; 5] =
-    ["cannot-read", "cannot-write", "output-exists", "output-is-input", "plan-appraisal"];
+const FILE_CODES: [&str; 6] =
+    ["cannot-read", "cannot-write", "output-changed", "output-exists", "output-is-input", "plan-appraisal"];
 
 /// The result of a fallible function of this crate.
 pub type Result<T> = std::result::Result<T, WorkbookError>;

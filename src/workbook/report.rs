@@ -145,6 +145,8 @@ pub struct Report {
     pub ticked: usize,
     /// Rows of numbers along the years that no role names: heading and cells.
     pub not_valued: Vec<String>,
+    /// Formulas of the workbook that have no result until a spreadsheet program opens the output, by sheet in words.
+    pub awaiting: Vec<String>,
     /// The verdict as written to the audit summary; of several appraisals, that of all.
     pub verdict: String,
 }

@@ -20,7 +20,8 @@ fn json(output: &std::process::Output) -> serde_json::Value {
     serde_json::from_str(&stdout(output)).unwrap_or_else(|_| panic!("no JSON: {}", stderr(output)))
 }
 
-/// A document without the path of its input, and without what cells go by: `Appraisal!B34 [hence_npv]`.
+/// A document without the path of its input, and without what cells go by: `Appraisal!B34 [hence_npv]`,
+/// `(from hence_price_basis)`.
 fn without_names_of_cells(mut document: serde_json::Value) -> String {
     let several = document.get("books").is_some();
     let books = match several {
@@ -32,13 +33,16 @@ fn without_names_of_cells(mut document: serde_json::Value) -> String {
             book.as_object_mut().unwrap().remove(key);
         }
     }
-    let text = document.to_string();
-    let mut parts = text.split(" [");
-    let first = parts.next().unwrap().to_owned();
-    parts.fold(first, |text, part| match part.split_once(']') {
-        Some((name, rest)) if name.contains("hence_") || name.contains("shelf.toml line ") => text + rest,
-        _ => text + " [" + part,
-    })
+    let named = |name: &str| name.contains("hence_") || name.contains("shelf.toml line ");
+    let without = |text: String, open: &str, close: char| {
+        let mut parts = text.split(open);
+        let first = parts.next().unwrap().to_owned();
+        parts.fold(first, |text, part| match part.split_once(close) {
+            Some((name, rest)) if named(name) => text + rest,
+            _ => text + open + part,
+        })
+    };
+    without(without(document.to_string(), " [", ']'), " (from ", ')')
 }
 
 #[test]

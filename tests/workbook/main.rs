@@ -30,6 +30,7 @@ mod roles;
 mod samples;
 mod scenario;
 mod sensitivity;
+mod settle;
 mod shapes;
 mod sheets;
 mod shelf;

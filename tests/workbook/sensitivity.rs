@@ -246,3 +246,31 @@ fn values_under_a_path_of_growth_have_a_second_route() {
         check(&cells(&back[&format!("{i}.xlsx")]), basis, "zero");
     }
 }
+
+/// Rent of 5 a year from 2027 on, for ever, where growth persists: summed here year by year.
+#[test]
+fn flows_for_ever_are_filled_where_growth_persists() {
+    let text = "A1: 'Base | 2026\nA2: 'Basis | 'preference 1%, elasticity 2, log growth 2% sd 1% persistence 0.8\n\
+                 A3: 'Tail | 'for ever\nA4: 'Year | 2026 | 2027\nA5: 'Works | 100 | 0\nA6: 'Rent | 0 | 5\n\
+                 A9: 'Net present value";
+    let book = Small::default().sheet("Plan", text).names(
+        "hence_base B1, hence_basis B2, hence_years B4:C4, hence_tail_rent B3, hence_cost_works B5:C5, \
+         hence_benefit_rent B6:C6, hence_npv B9",
+    );
+    let (mut due, mut weight, mut log) = (-100.0, 0.0, 0.0);
+    for _ in 0..4000 {
+        weight = 1.0 + 0.8 * weight;
+        log += -0.05 + 4.0 * 0.01f64.powi(2) * weight * weight / 2.0;
+        due += 5.0 * f64::exp(log);
+    }
+    let bytes = filled(&book.bytes(), &[]);
+    assert_eq!(verdict(&bytes), VERDICT_AGREES);
+    let cells = cells(&bytes);
+    let npv = cells.iter().find(|((sheet, cell), _)| sheet == "Plan" && cell.to_string() == "B9");
+    let npv = number(&npv.expect("the cell").1.value);
+    assert!((npv - due).abs() < 1e-9, "{npv}, due {due}");
+    let found = compared(&book);
+    for entry in found.switching.iter().filter(|entry| matches!(entry.moved, Moved::Parameter(_))) {
+        assert!(!entry.values.is_empty() && entry.unresolved.is_empty() && entry.note.is_none(), "{entry:?}");
+    }
+}

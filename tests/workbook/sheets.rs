@@ -217,7 +217,7 @@ fn analyst(audit: &Audit) -> Vec<Sheet> {
                     CellWrite::Formula(text, result) => sheet.formula(row, col, Style::Exact, text, result),
                     CellWrite::Number(x) => sheet.number(row, col, Style::Exact, x),
                     CellWrite::Text(text) => sheet.text(row, col, Style::Text, text),
-                    CellWrite::DropValue => {}
+                    CellWrite::DropValue | CellWrite::Result(_) => {}
                 }
             }
         }

@@ -132,7 +132,7 @@ fn record(input: &str, report: Report) -> Record {
         output: Some(format!("out/{}", input.replace(".xlsx", ".audited.xlsx"))),
         status: report.status(),
         report,
-        ..Record::failed(String::new(), String::new(), &[])
+        ..Record::failed(String::new(), &[])
     }
 }
 
@@ -143,7 +143,7 @@ fn shelf() -> Vec<u8> {
     let records = [
         record("east/dyke.xlsx", reported(&dyke("3.5%", "20"), &on("15%"))),
         record("mere.xlsx", reported(&ends("least cost"), &on("6%"))),
-        Record::failed("torn.xlsx".to_owned(), String::new(), &[problem]),
+        Record { input: "torn.xlsx".to_owned(), ..Record::failed(String::new(), &[problem]) },
     ];
     assert_eq!(records[2].status, Status::Failed);
     summary::write(&records, Path::new("summary.xlsx")).expect("a workbook")

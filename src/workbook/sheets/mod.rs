@@ -39,6 +39,7 @@ use crate::writer::{Content, Sheet, Style};
 
 pub(crate) use adjustments::adjusted;
 pub(crate) use charts::era_words;
+pub(crate) use lines::DIFFERS;
 pub use own::{APPRAISAL, DIGEST, OWN, VERDICT};
 pub use several::{Sibling, overall, package};
 pub use summary::VERDICT_AGREES;

@@ -4,6 +4,8 @@ use std::path::Path;
 
 use hence_core::CAUTION;
 
+use crate::model::Workbook;
+use crate::package::Package;
 use crate::problem::{Problem, Result, Severity};
 use crate::report::{OptionReport, Status};
 use crate::writer::{self, Sheet, Style};
@@ -20,6 +22,7 @@ const BRIDGE: &str = "Bridge";
 const MOVERS: &str = "Largest movers";
 const FAILURES: &str = "Failures";
 const WARNINGS: &str = "Warnings";
+const AWAITING: &str = "Awaiting recalculation";
 
 /// The summary workbook's bytes: the same records and place give the same bytes.
 ///
@@ -47,7 +50,37 @@ pub fn write(records: &[Record], place: &Path) -> Result<Vec<u8>> {
         read,
         Severity::Warning,
     ));
+    sheets.extend(awaiting(records));
     writer::workbook(&sheets, &[])
+}
+
+/// Formulas that show nothing until a spreadsheet program opens the output; no sheet where there are none.
+fn awaiting(records: &[Record]) -> Option<Sheet> {
+    let mut sheet = Sheet::new(AWAITING);
+    sheet.columns(0, 0, 44.0);
+    sheet.columns(1, 1, 100.0);
+    sheet.text(0, 0, Style::Title, "Formulas that await recalculation");
+    let note = "They rest on what was filled. A spreadsheet program computes them when it opens the output; previewers and \
+                scripts find no value there, and hence takes none for it. With --settle, LibreOffice computes them at once.";
+    sheet.paragraph(1, 0, 1, Style::Wrapped, note);
+    sheet.text(3, 0, Style::Heading, "Workbook");
+    sheet.text(3, 1, Style::Heading, "Cells");
+    let mut row = 3;
+    for record in records.iter().filter(|record| !record.report.awaiting.is_empty()) {
+        row += 1;
+        sheet.paragraph(row, 0, 0, Style::Wrapped, &record.input);
+        sheet.paragraph(row, 1, 1, Style::Wrapped, record.report.awaiting.join("; "));
+    }
+    (row > 3).then_some(sheet)
+}
+
+/// Whether a file is such a summary.
+pub fn is_one(path: &Path) -> bool {
+    let Ok(package) = Package::open(path) else { return false };
+    Workbook::read(&package).is_ok_and(|book| {
+        let names: Vec<&str> = book.sheets.iter().map(|sheet| sheet.name.as_str()).collect();
+        names.starts_with(&[SUMMARY, BRIDGE]) && names.contains(&FAILURES) && names.contains(&WARNINGS)
+    })
 }
 
 fn summary(records: &[Record]) -> Sheet {

@@ -52,9 +52,10 @@ const DATA: &[(&str, &[&[Held]])] = &[
     ("N1", &[&[N(0.0), N(-100.0)], &[N(1.0), N(230.0)], &[N(2.0), N(-132.0)]]),
     ("P1", &[&[N(9000.0)], &[N(18000.0)], &[N(64000.0)]]),
     ("Q1", &[&[T("3.5%")], &[T("uk-2003")], &[T("nowhere-1")]]),
-    // R1:R2 stay blank. Shares; a series of consumption.
-    ("T1", &[&[N(0.5)], &[N(0.25)], &[N(0.25)]]),
-    ("U1", &[&[N(100.0)], &[N(103.0)], &[N(104.5)], &[N(109.0)], &[N(108.0)]]),
+    // Shares; a series of consumption.
+    ("P5", &[&[N(0.5)], &[N(0.25)], &[N(0.25)]]),
+    ("Q5", &[&[N(100.0)], &[N(103.0)], &[N(104.5)], &[N(109.0)], &[N(108.0)]]),
+    // R1:R2 stay blank.
 ];
 
 /// An argument of a call.
@@ -183,17 +184,17 @@ pub const CASES: &[Case] = &[
     case("RAMSEY", &[Number(0.01), Of("A1:A3"), Number(0.02)]),
     case("ELASTICITY", &[Number(0.4), Number(0.25)]),
     case("ELASTICITY", &[Number(1.0), Number(0.25)]),
-    case("BRACKETS", &[Of("T1:T3"), Of("T1:T3"), Of("P1:P3")]),
-    case("HAZARD", &[Of("T1:T3")]),
+    case("BRACKETS", &[Of("P5:P7"), Of("P5:P7"), Of("P1:P3")]),
+    case("HAZARD", &[Of("P5:P7")]),
     case("HAZARD", &[Number(0.01), Text("continuous")]),
     case("WAITING", &[Of("P1:P3"), Text("yearly")]),
-    case("GROWTH", &[Of("U1:U5")]),
-    case("GROWTH", &[Of("U1:U5"), Of("J1:J5")]),
-    case("GROWTH", &[Of("U1:U5"), Of("J1:J4")]),
+    case("GROWTH", &[Of("Q5:Q9")]),
+    case("GROWTH", &[Of("Q5:Q9"), Of("J1:J5")]),
+    case("GROWTH", &[Of("Q5:Q9"), Of("J1:J4")]),
     case("UTILITY", &[Of("P1:P3"), Number(1.5)]),
-    case("MARGINAL", &[Of("P1:P3"), Number(1.5)]),
-    case("WELFARE", &[Of("U1:U5"), Of("A1:A5"), Number(0.015), Number(1.5)]),
-    case("WELFARE", &[Of("U1:U5"), Of("A1:A5"), Number(0.015), Number(1.0), Text("continuous")]),
+    case("MARGINAL", &[Of("P5:P7"), Number(1.5)]),
+    case("WELFARE", &[Of("Q5:Q9"), Of("A1:A5"), Number(0.015), Number(1.5)]),
+    case("WELFARE", &[Of("Q5:Q9"), Of("A1:A5"), Number(0.015), Number(1.0), Text("continuous")]),
     case(
         "COMPENSATION",
         &[
@@ -207,8 +208,8 @@ pub const CASES: &[Case] = &[
         ],
     ),
     case("EXACT", &[Of("D3:H3"), Of("D1:H1"), Of("D3:H3"), Number(2026.0), Number(1.5)]),
-    case("EXACT", &[Of("N1:N3"), Of("P1:P3"), Of("T1:T3"), Number(9000.0), Number(1.5)]),
-    case("EQUIVALENT", &[Of("P1:P3"), Of("T1:T3"), Number(1.5)]),
+    case("EXACT", &[Of("N1:N3"), Of("P1:P3"), Of("P5:P7"), Number(9000.0), Number(1.5)]),
+    case("EQUIVALENT", &[Of("P1:P3"), Of("P5:P7"), Number(1.5)]),
     case("WEIGHT", &[Of("P1:P3"), Number(32000.0), Number(1.3)]),
     case("REAL", &[Number(0.06), Number(0.02)]),
     case("SCHEDULE", &[Text("uk-2003")]),

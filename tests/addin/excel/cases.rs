@@ -202,20 +202,19 @@ fn functions() -> Vec<String> {
     lines
 }
 
-/// Switching values and draws.
+/// Switching values and draws; over many years once each, as they take long.
 fn uncertain(years: &dyn Fn() -> Value, flows: &dyn Fn() -> Value) -> Vec<String> {
     let line = || s("preference 1.5%, elasticity 1, growth 2%");
+    let (preference, growth) = (|| s("uniform 0% to 2%"), || s("normal mean 2% sd 0.5%"));
     let mut lines = Vec::new();
+    let mut once = |line: String| lines.push(format!("once {line}"));
     for parameter in ["rate", "preference", "Elasticity", "growth", "luck"] {
-        lines.push(compared("SWITCH", &[line(), s(parameter), years(), flows(), n(2026.0)]));
+        once(compared("SWITCH", &[line(), s(parameter), years(), flows(), n(2026.0)]));
     }
     let middle = || s("flows middle, base start");
-    lines.push(compared(
-        "SWITCH",
-        &[line(), s("growth"), years(), flows(), n(2026.0), middle(), n(-0.1), n(0.5)],
-    ));
+    once(compared("SWITCH", &[line(), s("growth"), years(), flows(), n(2026.0), middle(), n(-0.1), n(0.5)]));
+    once(compared("DRAWS", &[preference(), n(1.0), growth(), years(), flows(), n(2026.0), middle()]));
     lines.push(compared("MULTIPLIER", &[n(20.0), column(&numbers([-100.0, 120.0, 0.0]))]));
-    let (preference, growth) = (|| s("uniform 0% to 2%"), || s("normal mean 2% sd 0.5%"));
     let both = array(2, 2, &numbers([-100.0, 104.0, -99.0, 103.0]));
     let at = |values| row(&numbers(values));
     let given = |draws: f64| {
@@ -237,8 +236,9 @@ fn uncertain(years: &dyn Fn() -> Value, flows: &dyn Fn() -> Value) -> Vec<String
     };
     lines.push(compared("DRAWS", &given(50.0)));
     lines.push(compared("DRAWS", &given(0.5)));
-    let usual = compared("DRAWS", &[preference(), n(1.0), growth(), years(), flows(), n(2026.0), middle()]);
-    lines.push(format!("once {usual}"));
+    let two = [at([0.0, 1.0]), at([-100.0, 104.0])];
+    lines.push(compared("SWITCH", &[&[line(), s("rate")], &two[..]].concat()));
+    lines.push(compared("SWITCH", &[&[n(0.035), s("growth")], &two[..]].concat()));
     lines
 }
 
