@@ -4,12 +4,18 @@
 /// Whether this system can limit the memory of a process.
 pub const LIMITS_MEMORY: bool = cfg!(target_os = "linux");
 
-/// From now on this process has at most so many bytes of address space: what asks for more is refused, and ends.
+/// From now on this process has at most so many bytes of address space: what asks for more is refused, and ends. A
+/// program that it starts may lift the limit for itself.
 #[cfg(target_os = "linux")]
 pub fn limit_memory(bytes: u64) {
-    let limit = libc::rlimit { rlim_cur: bytes, rlim_max: bytes };
-    // SAFETY: setrlimit only reads the limit, which lives until it returns. It fails where a lower one is in force.
-    unsafe { libc::setrlimit(libc::RLIMIT_AS, &raw const limit) };
+    let mut limit = libc::rlimit { rlim_cur: 0, rlim_max: 0 };
+    // SAFETY: getrlimit writes the limit and setrlimit only reads it; it lives until both return.
+    unsafe {
+        if libc::getrlimit(libc::RLIMIT_AS, &raw mut limit) == 0 {
+            limit.rlim_cur = bytes.min(limit.rlim_max);
+            libc::setrlimit(libc::RLIMIT_AS, &raw const limit);
+        }
+    }
 }
 
 /// There is no such limit here.

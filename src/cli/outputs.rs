@@ -1,9 +1,11 @@
 //! Where outputs go: beside the input, into a folder, to the file that was named, or to standard output.
 
 use std::collections::BTreeMap;
+use std::ffi::OsStr;
 use std::io::{IsTerminal, Write};
 use std::path::{Path, PathBuf};
 
+use hence_workbook::older::OldFormat;
 use hence_workbook::package::{Identity, may_write, same_file};
 use hence_workbook::problem::{Place, Problem, Result as BookResult};
 
@@ -75,11 +77,17 @@ fn audited_name(input: &Path) -> Result<PathBuf, Failure> {
         )));
     }
     name.push(AUDITED);
-    if let Some(extension) = input.extension() {
+    if let Some(extension) = extension(input) {
         name.push(".");
         name.push(extension);
     }
     Ok(input.with_file_name(name))
+}
+
+/// The extension of an output: the input's, but for one of which only the values are read.
+fn extension(input: &Path) -> Option<&OsStr> {
+    let own = input.extension()?;
+    Some(if OldFormat::has_extension(own) { OsStr::new("xlsx") } else { own })
 }
 
 /// True where `--out` names a file rather than a folder.
@@ -107,10 +115,10 @@ fn output_for(input: &Input, out: Option<&Path>, several: bool) -> Result<Output
         return Output::named(out);
     }
     if names_a_file(out) {
-        let (have, want) = (out.extension(), input.extension());
+        let (have, want) = (out.extension(), extension(input));
         if !is_dash(input) && have.map(|e| e.to_ascii_lowercase()) != want.map(|e| e.to_ascii_lowercase()) {
             return Err(Failure::Message(format!(
-                "--out {}: {} stays .{}, since the extension follows the content",
+                "--out {}: the output of {} is .{}, since the extension follows the content",
                 out.display(),
                 input.display(),
                 want.unwrap_or_default().to_string_lossy()

@@ -3,12 +3,13 @@
 //! The readers of these formats trust what a file says of its own sizes, and a hostile one can make them ask for more
 //! memory than there is. Whoever calls [`convert`] on a file that is not their own does so in a process with limits.
 
+use std::ffi::OsStr;
 use std::io::Cursor;
 
 use calamine::{Ods, Reader, Sheet as Listed, SheetType, SheetVisible, Xls, Xlsb};
 use serde::{Deserialize, Serialize};
 
-use crate::package::Zip;
+use crate::package::{Package, Zip};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::writer::{self, valid_sheet_name};
 
@@ -27,6 +28,14 @@ pub enum OldFormat {
 }
 
 impl OldFormat {
+    /// The extensions that such files have, without the dot.
+    pub const EXTENSIONS: [&str; 3] = ["xls", "xlsb", "ods"];
+
+    /// Whether a file's extension is one of them.
+    pub fn has_extension(extension: &OsStr) -> bool {
+        Self::EXTENSIONS.iter().any(|known| extension.eq_ignore_ascii_case(known))
+    }
+
     /// The format of a file by what it holds, whatever its name; none where it is another or damaged.
     pub fn of(bytes: &[u8]) -> Option<Self> {
         if bytes.starts_with(b"\xD0\xCF\x11\xE0\xA1\xB1\x1A\xE1") {
@@ -61,6 +70,19 @@ pub struct Converted {
     pub bytes: Vec<u8>,
     /// What was not carried over, a sentence each.
     pub lost: Vec<String>,
+}
+
+/// A workbook of any format that is read; of an older one, its values. Not for files that could be hostile, but in a
+/// process with limits.
+///
+/// # Errors
+/// As [`convert`] and [`Package::from_bytes`].
+pub fn open(name: &str, bytes: Vec<u8>) -> Result<Package> {
+    if OldFormat::of(&bytes).is_none() {
+        return Package::from_bytes(name, bytes);
+    }
+    let values = convert(name, &bytes)?;
+    Package::converted(name, &bytes, values)
 }
 
 /// The values of a workbook of another format.

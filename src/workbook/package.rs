@@ -86,14 +86,14 @@ impl Package {
     }
 
     /// A file's name in a package, without folders.
-    pub(crate) fn name_of(path: &Path) -> String {
+    pub fn name_of(path: &Path) -> String {
         path.file_name().unwrap_or(path.as_os_str()).to_string_lossy().into_owned()
     }
 
     /// The bytes of a file, and one more than allowed of a file that is too large, whatever its length claims.
     ///
     /// **Errors**: `cannot-read`.
-    pub(crate) fn read(path: &Path) -> Result<Vec<u8>> {
+    pub fn read(path: &Path) -> Result<Vec<u8>> {
         let failed = |e: std::io::Error| -> WorkbookError {
             Problem::error("cannot-read", Place::default(), format!("{} cannot be read: {e}", path.display()))
                 .into()

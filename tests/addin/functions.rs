@@ -534,11 +534,60 @@ fn explain_says_what_is_used_or_what_is_wrong() {
     assert!(!words("EXPLAIN", &[t("2.5% to 2070, 1.5% after"), None, None, n(2026.0)]).contains("Needs"));
 }
 
+/// HENCE.WHY gives the words behind an error value, of the call as a whole or of its first cell at fault.
+#[test]
+fn why_says_what_is_wrong_with_a_call() {
+    let touching = row(numbers([100.0, -220.0, 121.0]));
+    for (given, parts) in [
+        (vec![t("FACTOR"), t("3,5%"), n(1.0)], vec!["#VALUE!", "basis", "3.5%"]),
+        (
+            vec![t("hence.factor"), t("3.5% to 30"), column(numbers([1.0, 31.0]))],
+            vec!["#N/A", "offset, row 2"],
+        ),
+        (vec![t("FACTOR"), t("3.5%")], vec!["#VALUE!", "HENCE.FACTOR needs the argument offset"]),
+        (
+            vec![t("VALUE"), n(1.0), row(numbers([0.0, 1.0])), row([x(4.0), text("tbc")])],
+            vec!["#VALUE!", "flows, column 2", "tbc"],
+        ),
+        (
+            vec![t("DRAWS"), t("normal mean 1%"), n(1.0), n(0.02), n(1.0), n(1.0)],
+            vec!["#VALUE!", "preference", "sd"],
+        ),
+        (
+            vec![t("DRAWS"), n(0.01), n(1.0), n(0.02), n(1.0), n(1.0), None, None, None, None, None, n(-1.0)],
+            vec!["#NUM!", "seed"],
+        ),
+        (
+            vec![t("SWITCH"), t("3.5%"), t("growth"), row(numbers([0.0, 1.0])), row(numbers([-1.0, 2.0]))],
+            vec!["#VALUE!", "not stated by growth", "Try:"],
+        ),
+        (vec![t("EXACT"), n(-4.0), n(4.0), n(1.0), n(4.0), n(2.0)], vec!["#NUM!", "leaves nothing"]),
+        (vec![t("GROWTH"), row(numbers([1.0, 2.0]))], vec!["#VALUE!", "at least 4"]),
+        (
+            vec![t("IRR"), row(numbers([0.0, 1.0])), row(numbers([1.0, 1.0]))],
+            vec!["#NUM!", "no rate of return"],
+        ),
+        (vec![t("IRR"), row(numbers([0.0, 1.0, 2.0])), touching], vec!["#NUM!", "settle"]),
+        (vec![t("REAL"), n(0.05), one(REF)], vec!["#REF!", "inflation"]),
+        (vec![t("REAL"), n(0.05), n(0.02), n(0.02)], vec!["#VALUE!", "at most 2"]),
+        (vec![t("WHY"), t("WHY")], vec!["no function WHY"]),
+        (vec![t("FACTORIAL"), n(1.0)], vec!["no function FACTORIAL"]),
+        (vec![one(Cell::Blank)], vec!["function"]),
+        (vec![t("FACTOR"), t("3.5%"), n(1.0), one(Cell::Blank)], vec!["nothing is wrong"]),
+        (vec![t("EXPLAIN"), t("nowhere-1")], vec!["nothing is wrong"]),
+    ] {
+        let said = words("WHY", &given);
+        for part in parts {
+            assert!(said.contains(part), "{part} in: {said}");
+        }
+    }
+}
+
 /// Arguments that suit each function, and texts in their places.
 #[test]
 fn no_function_takes_a_text_for_a_number() {
     for function in
-        FUNCTIONS.iter().filter(|function| function.name != "EXPLAIN" && function.name != "SCHEDULE")
+        FUNCTIONS.iter().filter(|function| !["EXPLAIN", "SCHEDULE", "WHY"].contains(&function.name))
     {
         let sound: Vec<Given> = match function.name {
             "FACTOR" | "RATE" | "MEANRATE" | "INSTANT" => vec![t("3.5%"), n(2.0)],

@@ -2,6 +2,8 @@
 
 use hence_core::{Compounding, parse_financial_year};
 
+use std::cell::RefCell;
+
 use chrono::{Days, NaiveDate};
 
 use super::fault::{Fault, Outcome};
@@ -11,6 +13,8 @@ use super::{Cell, Function, Range};
 pub(super) struct Arguments<'a> {
     function: &'static Function,
     given: &'a [Option<Range<'a>>],
+    /// The first fault of a cell of the answer, which shows an error value alone.
+    fault: RefCell<Option<Fault>>,
 }
 
 /// One cell of an argument, with its words for messages.
@@ -49,7 +53,7 @@ impl<'a> Arguments<'a> {
                 function.full_name()
             )));
         }
-        let arguments = Arguments { function, given };
+        let arguments = Arguments { function, given, fault: RefCell::new(None) };
         for i in 0..function.required() {
             if arguments.range(i).is_none() {
                 let name = function.arguments[i].name;
@@ -57,6 +61,24 @@ impl<'a> Arguments<'a> {
             }
         }
         Ok(arguments)
+    }
+
+    /// Those from the second one on, as they were given.
+    pub fn rest(&self) -> &'a [Option<Range<'a>>] {
+        self.given.get(1..).unwrap_or_default()
+    }
+
+    /// Keeps what is wrong with a cell of the answer, the first only.
+    pub fn note<T>(&self, result: Outcome<T>) -> Outcome<T> {
+        if let Err(fault) = &result {
+            self.fault.borrow_mut().get_or_insert_with(|| fault.clone());
+        }
+        result
+    }
+
+    /// What was kept.
+    pub fn noted(&self) -> Option<Fault> {
+        self.fault.borrow().clone()
     }
 
     /// An argument, if it is given. A single blank cell counts as an optional argument left out.

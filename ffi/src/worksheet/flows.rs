@@ -249,9 +249,10 @@ pub(super) fn lists<const N: usize>(
 }
 
 /// The present value of each stream.
-pub(super) fn values(streams: &Streams, factors: &[f64]) -> Range<'static> {
-    let value =
-        |flows: &Outcome<Vec<f64>>| flows.as_ref().map(|flows| dot(factors, flows)).map_err(Clone::clone);
+pub(super) fn values(arguments: &Arguments<'_>, streams: &Streams, factors: &[f64]) -> Range<'static> {
+    let value = |flows: &Outcome<Vec<f64>>| {
+        arguments.note(flows.as_ref().map(|flows| dot(factors, flows)).map_err(Clone::clone))
+    };
     let cells: Vec<Cell<'static>> =
         streams.flows.iter().map(|flows| super::spread::cell(value(flows))).collect();
     Range::new(streams.rows, streams.columns, cells).expect("one cell a stream")

@@ -56,6 +56,7 @@ pub(super) fn run(name: &str, arguments: &Arguments<'_>) -> Outcome<Range<'stati
         }),
         "SCHEDULE" => schedule(arguments),
         "EXPLAIN" => Ok(explain::run(arguments)),
+        "WHY" => explain::why(arguments),
         _ => Err(Fault::value(format!("there is no function {name}"))),
     }
 }
@@ -126,7 +127,7 @@ fn present_values(arguments: &Arguments<'_>) -> Outcome<Range<'static>> {
     let streams = Streams::read(arguments, 1, 2)?;
     let clock = Clock::read(arguments, &streams.axis, basis.timing(), 3, 4)?;
     let factors = clock.factors(&basis, place, &streams.axis)?;
-    Ok(values(&streams, &factors))
+    Ok(values(arguments, &streams, &factors))
 }
 
 /// The basis argument of a function that takes one basis only.

@@ -218,6 +218,12 @@ pub const CASES: &[Case] = &[
     case("EXPLAIN", &[Text("3,5 % \u{2212} \u{1F30D} \"net\"")]),
     case("EXPLAIN", &[Text("3.5%"), Of("D1:H1"), Of("D2:H2"), Number(2026.0), Text("flows middle")]),
     case("EXPLAIN", &[Text("3.5%"), Of("J1:J5"), Of("L1:L5"), Number(2026.0)]),
+    case("WHY", &[Text("FACTOR"), Text("3.5%"), Of("B1:B6")]),
+    case(
+        "WHY",
+        &[Text("HENCE.SWITCH"), Text("3.5%"), Text("growth"), Of("D1:H1"), Of("D2:H2"), Number(2026.0)],
+    ),
+    case("WHY", &[Text("FACTOR"), Text("3.5%"), Of("A1:A8")]),
 ];
 
 /// Column (from 1) and row (from 1) of an address.

@@ -199,6 +199,12 @@ fn functions() -> Vec<String> {
     lines.extend(welfare());
     lines.push(compared("EXPLAIN", &[s("uk-2003")]));
     lines.push(compared("EXPLAIN", &[s(LINE), years(), flows(), n(2026.0), s("flows late")]));
+    lines.push(compared("WHY", &[s("VALUE"), s(LINE), years(), flows(), n(2026.0), s("flows late")]));
+    lines.push(compared("WHY", &[s("hence.real"), n(0.05), column(&[n(0.02), n(-1.0)])]));
+    lines.push(compared("WHY", &[s("FACTOR"), s(LINE), n(1.0)]));
+    let seeds =
+        [s("DRAWS"), s("1%"), n(1.0), n(0.02), n(1.0), n(1.0), left_out(), left_out(), left_out(), n(50.0)];
+    lines.push(compared("WHY", &[&seeds[..], &[n(20.0), n(-1.0)]].concat()));
     lines
 }
 

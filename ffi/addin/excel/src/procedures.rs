@@ -70,6 +70,9 @@ procedures! {
     hence_xll_real: "REAL" (nominal, inflation);
     hence_xll_schedule: "SCHEDULE" (id);
     hence_xll_explain: "EXPLAIN" (basis, years, flows, base, timing);
+    hence_xll_why: "WHY" (
+        function, first, second, third, fourth, fifth, sixth, seventh, eighth, ninth, tenth, eleventh
+    );
 }
 
 /// Answers one call. A panic, which would be a fault of the library, is `#VALUE!`.
