@@ -33,6 +33,7 @@ mod samples;
 mod scenario;
 mod sensitivity;
 mod settle;
+mod shapes;
 mod sheets;
 mod shelf;
 mod shelf_summary;

@@ -2,6 +2,8 @@
 //!
 //! The workbooks are made up for these tests.
 
+mod proposed;
+
 use hence_core::Catalogue;
 use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::fill::{FillRequest, Filled, fill};
@@ -383,4 +385,90 @@ fn beside_appraisals_names_count_for_settings_alone() {
     let message = plan.part(&model).expect_err("a choice").to_string();
     assert!(message.contains("2 appraisals: North, South"), "{message}");
     assert!(plan.only(Some("South".into())).part(&model).is_ok());
+}
+
+/// The workbook that `wrong.txt` is about.
+fn one_for_wrong_plans() -> Package {
+    let site = "A4: 'Year | 2025 | 2026 | 2027 | 2028\nA5: 'Works | 1 | 2 | 3 | 4\nA9: 'NPV |";
+    let book = Small::default()
+        .sheet("Flows", FLOWS)
+        .names("Works_row B5:E5")
+        .sheet("Notes", "A1: 'nothing")
+        .sheet("Site 1", site)
+        .sheet("Site 2", site)
+        .raw_name("Broken", "Flows!#REF!");
+    Package::from_bytes("book.xlsx", book.bytes()).expect("a package")
+}
+
+#[test]
+fn wrong_plans_are_explained_by_line_and_cell() {
+    let text = include_str!("planfile/wrong.txt");
+    let package = one_for_wrong_plans();
+    let mut cases = 0;
+    let mut wrong = String::new();
+    for case in text.split("\n== ").skip(1) {
+        let (title, rest) = case.split_once('\n').expect("a title");
+        let (plan, due) = rest.split_once("\n--\n").expect("a plan and what is said of it");
+        let found = match PlanFile::parse("shelf.toml", plan) {
+            Ok(plan) => {
+                let request = FillRequest { plan: Some(plan), ..FillRequest::default() };
+                fill(&package, &request, &Catalogue::builtin()).expect_err(title)
+            }
+            Err(error) => error,
+        };
+        let told: String = found
+            .problems()
+            .iter()
+            .map(|p| format!("{p}\n  Try: {}\n", p.hint.as_deref().unwrap_or("-")))
+            .collect();
+        if told.trim() != due.trim() {
+            wrong.push_str(&format!("== {title}\n{plan}\n--\n{told}\n"));
+        }
+        cases += 1;
+    }
+    assert!(wrong.is_empty(), "otherwise:\n{wrong}");
+    assert!(cases >= 10, "{cases}");
+}
+
+#[test]
+fn cells_in_pieces_and_columns_of_tables_are_given_like_any_others() {
+    let flows =
+        "A4: 'Year | 2025 | 2026 | 'Sum | 2027 | 2028\nA5: 'Works | 100 | 50 | 150 | 25 | 5\nA9: 'NPV |";
+    let pieces = Small::default().sheet("Flows", flows);
+    let plan = parsed(
+        "sheet = \"Flows\"\n[settings]\nbase = 2025\nbasis = 0.035\n[roles]\nyears = \"B4:C4,E4:F4\"\n\
+         cost_works = \"B5:C5, Flows!E5:F5\"\nnpv = \"B9\"\n",
+    );
+    let d = |t: i32| 1.035f64.powi(-t);
+    let npv = -100.0 - 50.0 * d(1) - 25.0 * d(2) - 5.0 * d(3);
+    let report = filled(&pieces.bytes(), Some(&plan)).report;
+    assert!((report.options[0].absolute.npv - npv).abs() < 1e-9);
+    assert_eq!(report.verdict, VERDICT_AGREES);
+
+    let table = "<table xmlns=\"http://schemas.openxmlformats.org/spreadsheetml/2006/main\" id=\"1\" name=\"Flows\" \
+                 displayName=\"Flows\" ref=\"A1:B5\"><autoFilter ref=\"A1:B5\"/><tableColumns count=\"2\">\
+                 <tableColumn id=\"1\" name=\"Year\"/><tableColumn id=\"2\" name=\"Works\"/></tableColumns></table>";
+    let down = Small::default()
+        .sheet(
+            "Site",
+            "A1: 'Year | 'Works\nA2: 2025 | 100\nA3: 2026 | 50\nA4: 2027 | 25\nA5: 2028 | 5\nD1: 'NPV |",
+        )
+        .after_cells("<tableParts count=\"1\"><tablePart r:id=\"rId1\"/></tableParts>")
+        .related("table", "tables/table1.xml", table);
+    let plan = parsed(
+        "[settings]\nbase = 2025\nbasis = 0.035\n[roles]\nyears = \"Flows[Year]\"\ncost_works = \"Flows[Works]\"\n\
+         npv = \"Site!E1\"\n",
+    );
+    let report = filled(&down.bytes(), Some(&plan)).report;
+    assert!((report.options[0].absolute.npv - npv).abs() < 1e-9);
+}
+
+#[test]
+fn sheets_of_other_appraisals_are_not_told_of_as_left_out() {
+    let (book, plan) = two();
+    let alike =
+        |report: &hence_workbook::report::Report| report.problems.iter().any(|p| p.code == "sheet-alike");
+    assert!(!alike(&filled(&book.bytes(), Some(&plan)).report));
+    let one = plan.only(Some("North".into()));
+    assert!(!alike(&filled(&book.bytes(), Some(&one)).report));
 }

@@ -52,7 +52,7 @@ struct DifferenceOut {
 /// Exit 0 when nothing is wrong, 1 on any finding.
 pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    let (roles, plan) = (super::roles(&args.roles)?, super::plan(&args.roles, Some(&args.of))?);
+    let (roles, plan) = (super::roles(&args.roles)?, super::planned(&args.roles, Some(&args.of))?);
     let request = CheckRequest { roles, plan };
     let gathered = gather(&args.books, None)?;
     for line in skipped_words(&gathered.skipped) {

@@ -12,7 +12,7 @@ use super::{rows, signs, sums, totals, units, years};
 use crate::appraisal::{Choice, Held, Target, TargetRole};
 use crate::findings::Finding;
 use crate::problem::Result;
-use crate::references::SheetRange;
+use crate::references::Area;
 
 /// Every structural mistake of a workbook that could be read, in no particular order.
 ///
@@ -35,9 +35,7 @@ fn call(finding: &mut Finding, seen: &Seen) {
     else {
         return;
     };
-    let inside = |at: &SheetRange| {
-        at.sheet == *sheet && at.range.contains(range.first) && at.range.contains(range.last)
-    };
+    let inside = |at: &Area| at.contains(sheet, range.first) && at.contains(sheet, range.last);
     let choices = || seen.appraisal.choices.iter();
     let streams = choices().flat_map(|choice| &choice.streams).map(|stream| (&stream.at, &stream.from));
     let targets = choices().flat_map(|choice| &choice.targets).map(|target| (&target.at, &target.from));
@@ -63,7 +61,7 @@ impl<'s, 'p> Look<'s, 'p> {
             let is_npv = |t: &&Target| matches!(t.role, TargetRole::Npv | TargetRole::PvTotal(None));
             let target =
                 choice.targets.iter().find(|t| is_npv(t) && matches!(t.held[0], Held::Formula { .. }));
-            target.map(|target| Slopes::of(cells.each(&target.at)[0], &cells, &HashSet::new()))
+            target.map(|target| Slopes::of(cells.each(&target.at.hull())[0], &cells, &HashSet::new()))
         };
         let npvs = seen.appraisal.choices.iter().map(npv).collect();
         Ok(Look { seen, cells, lines, npvs })
@@ -107,7 +105,7 @@ impl<'s, 'p> Look<'s, 'p> {
             let outcome = &self.seen.outcomes[c];
             let shared = |t: &&Target| t.role == TargetRole::Factor;
             for target in choice.targets.iter().filter(shared) {
-                if let Some(i) = self.cells.each(&target.at).iter().position(|at| *at == cell) {
+                if let Some(i) = self.cells.each(&target.at.hull()).iter().position(|at| *at == cell) {
                     added[c] += by * outcome.net.get(i).copied().unwrap_or(0.0);
                     touched = true;
                 }
@@ -122,7 +120,7 @@ impl<'s, 'p> Look<'s, 'p> {
         choices.flat_map(move |(c, choice)| {
             let streams = choice.streams.iter().enumerate();
             streams.filter_map(move |(s, stream)| {
-                let year = self.cells.each(&stream.at).iter().position(|at| *at == cell)?;
+                let year = self.cells.each(&stream.at.hull()).iter().position(|at| *at == cell)?;
                 Some((c, s, year))
             })
         })

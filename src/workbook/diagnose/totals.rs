@@ -53,7 +53,7 @@ pub(super) fn findings(look: &Look) -> Vec<Finding> {
         let mut targets: Vec<&Target> = choice.targets.iter().filter(|t| rank(&t.role).is_some()).collect();
         targets.sort_by_key(|target| rank(&target.role));
         for target in targets.into_iter().filter(|t| matches!(t.held[0], Held::Formula { .. })) {
-            let Some(&at) = look.cells.each(&target.at).first() else { continue };
+            let Some(&at) = look.cells.each(&target.at.hull()).first() else { continue };
             for suspect in suspected(look, c, choice, target, at) {
                 let known = suspects.iter().any(|other| {
                     (other.choice, other.stream, other.slip) == (suspect.choice, suspect.stream, suspect.slip)
@@ -105,7 +105,7 @@ fn multiples(
     let stream = &choice.streams[s];
     let sign = side(role, stream) / crate::formulas::side(stream.kind);
     let own = own_factors(look, choice);
-    let cells = look.cells.each(&stream.at);
+    let cells = look.cells.each(&stream.at.hull());
     let mut found = Vec::new();
     for (i, cell) in cells.iter().enumerate().filter(|(i, _)| stream.raw[*i] != 0.0) {
         let slope = slopes.at(*cell);
@@ -132,7 +132,7 @@ fn own_factors(look: &Look, choice: &Choice) -> Option<Vec<Option<f64>>> {
 
 fn suspected(look: &Look, c: usize, choice: &Choice, target: &Target, at: At) -> Vec<Suspect> {
     // A flow counts by its own cell, whatever other flows are worked out from it.
-    let flows = choice.streams.iter().flat_map(|stream| look.cells.each(&stream.at)).collect();
+    let flows = choice.streams.iter().flat_map(|stream| look.cells.each(&stream.at.hull())).collect();
     let slopes = Slopes::of(at, &look.cells, &flows);
     if slopes.unsettled {
         return Vec::new();
@@ -156,7 +156,7 @@ fn suspected(look: &Look, c: usize, choice: &Choice, target: &Target, at: At) ->
         };
         let relative: Vec<(usize, f64)> = years.iter().map(|(i, m)| (*i, m / usual(*i))).collect();
         let Some((slip, wrong)) = slip(&relative) else { continue };
-        let cells = look.cells.each(&choice.streams[*s].at);
+        let cells = look.cells.each(&choice.streams[*s].at.hull());
         let root = match slip {
             Slip::Ends(_) | Slip::Begins(_) => {
                 let counted = relative.iter().filter(|(_, m)| *m != 0.0).map(|(i, _)| *i);
@@ -169,7 +169,7 @@ fn suspected(look: &Look, c: usize, choice: &Choice, target: &Target, at: At) ->
                 let peer = peers.clone().find(|(p, _)| same(*p)).or_else(|| peers.clone().next());
                 peer.and_then(|(p, ys)| {
                     let (i, _) = ys.iter().find(|(_, m)| *m != 0.0)?;
-                    let theirs = look.cells.each(&choice.streams[*p].at)[*i];
+                    let theirs = look.cells.each(&choice.streams[*p].at.hull())[*i];
                     Some(left_out(look, &slopes, theirs, cells[*i]))
                 })
             }
@@ -409,7 +409,7 @@ fn finding(look: &Look, group: &[Suspect]) -> Finding {
     };
     let effect = effect(look, group);
     let at = whole(look, first.root);
-    let named = choice.targets.iter().find(|target| target.at == at);
+    let named = choice.targets.iter().find(|target| target.at.hull() == at);
     let place = Place::cells(&at.sheet, at.range);
     let place = named.map_or_else(|| place.clone(), |target| place.clone().called(&target.from));
     Finding {

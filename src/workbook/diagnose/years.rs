@@ -44,7 +44,7 @@ pub(super) fn findings(look: &Look) -> Vec<Finding> {
         if !slip || years.len() < axis.labels.len() {
             continue;
         }
-        let cell = crate::formulas::nth(axis.at.range, gaps[0]);
+        let cell = axis.at.nth(gaps[0]);
         let at = SheetRange::new(&axis.at.sheet, Range::cell(cell));
         let mut added = vec![0.0; look.seen.appraisal.choices.len()];
         for (c, choice) in

@@ -225,7 +225,7 @@ pub(super) fn check_apart(works: &[Work]) -> Result<()> {
             if seen.insert((w, &target.from)) {
                 let message =
                     format!("is filled by the appraisal `{}`, and by `{}` as {from}", of(w), of(first));
-                let place = Place::cells(&target.at.sheet, target.at.range).called(&target.from);
+                let place = Place::area(&target.at).called(&target.from);
                 problems.push(
                     Problem::error("target-overlap", place, message)
                         .hint("give each appraisal cells of its own"),
