@@ -14,6 +14,7 @@ mod outputs;
 mod rate;
 mod readme;
 mod schedules;
+mod shelf;
 mod start;
 mod targets;
 mod windows;
