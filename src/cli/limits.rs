@@ -1,15 +1,18 @@
 //! What the system does for a run: limits on a process, its end with its parent, signals. The only unsafe code of the
-//! command line stands here. Where the system is no Unix, there are no limits and no signals.
+//! command line stands here. Memory is limited under Linux; signals are those of a Unix.
 
 /// Whether this system can limit the memory of a process.
 pub const LIMITS_MEMORY: bool = cfg!(target_os = "linux");
 
-/// From now on this process has at most so many bytes of address space: what asks for more is refused, and ends.
+/// From now on this process has at most so many bytes of address space: what asks for more is refused, and ends. Where it
+/// ends so, it leaves no image of its memory behind.
 #[cfg(target_os = "linux")]
 pub fn limit_memory(bytes: u64) {
-    let limit = libc::rlimit { rlim_cur: bytes, rlim_max: bytes };
-    // SAFETY: setrlimit only reads the limit, which lives until it returns. It fails where a lower one is in force.
-    unsafe { libc::setrlimit(libc::RLIMIT_AS, &raw const limit) };
+    for (resource, most) in [(libc::RLIMIT_AS, bytes), (libc::RLIMIT_CORE, 0)] {
+        let limit = libc::rlimit { rlim_cur: most, rlim_max: most };
+        // SAFETY: setrlimit only reads the limit, which lives until it returns. It fails where a lower one is in force.
+        unsafe { libc::setrlimit(resource, &raw const limit) };
+    }
 }
 
 /// There is no such limit here.

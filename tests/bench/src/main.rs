@@ -1,4 +1,5 @@
-//! Benchmarks: factors and calls per second, draws, cells of LibreOffice, and filling workbooks of a million cells.
+//! Benchmarks: factors and calls per second, draws, cells of LibreOffice, filling workbooks of a million cells and a
+//! shelf of a thousand small ones.
 //! `bash tests/bench/run` writes RESULTS.md.
 
 /// The large workbooks, shared with the tests of the workbook crate.
@@ -7,6 +8,7 @@ mod books;
 mod calc;
 mod calls;
 mod draws;
+mod shelf;
 
 use std::path::Path;
 use std::time::{Duration, Instant};
@@ -23,6 +25,8 @@ fn main() {
         // A fill in a process of its own, so that its peak memory is its own.
         Some("fill") => fill(Path::new(&args[2])),
         Some("calc") => calc::calc(),
+        Some("shelf") => shelf::shelf(),
+        Some("make-shelf") => shelf::make(Path::new(&args[2]), args[3].parse().expect("workbooks")),
         Some("make") => {
             books::make(
                 Path::new(&args[2]),
@@ -36,6 +40,7 @@ fn main() {
             draws::draws();
             calc::calc();
             fills();
+            shelf::shelf();
         }
     }
 }
