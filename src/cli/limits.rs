@@ -4,14 +4,19 @@
 /// Whether this system can limit the memory of a process.
 pub const LIMITS_MEMORY: bool = cfg!(target_os = "linux");
 
-/// From now on this process has at most so many bytes of address space: what asks for more is refused, and ends. Where it
-/// ends so, it leaves no image of its memory behind.
+/// From now on this process has at most so many bytes of address space: what asks for more is refused, and ends, without an
+/// image of its memory on the disk. A program that it starts may lift the limit for itself.
 #[cfg(target_os = "linux")]
 pub fn limit_memory(bytes: u64) {
     for (resource, most) in [(libc::RLIMIT_AS, bytes), (libc::RLIMIT_CORE, 0)] {
-        let limit = libc::rlimit { rlim_cur: most, rlim_max: most };
-        // SAFETY: setrlimit only reads the limit, which lives until it returns. It fails where a lower one is in force.
-        unsafe { libc::setrlimit(resource, &raw const limit) };
+        let mut limit = libc::rlimit { rlim_cur: 0, rlim_max: 0 };
+        // SAFETY: getrlimit writes the limit and setrlimit only reads it; it lives until both return.
+        unsafe {
+            if libc::getrlimit(resource, &raw mut limit) == 0 {
+                limit.rlim_cur = most.min(limit.rlim_max);
+                libc::setrlimit(resource, &raw const limit);
+            }
+        }
     }
 }
 

@@ -1,10 +1,13 @@
 //! Where outputs go: beside the input, into a folder, to the file that was named, or to standard output.
 
 use std::collections::BTreeMap;
+use std::ffi::OsStr;
 use std::io::{IsTerminal, Write};
 use std::path::{Path, PathBuf};
 
-use hence_workbook::package::Identity;
+use hence_workbook::older::OldFormat;
+use hence_workbook::package::{Identity, may_write, same_file};
+use hence_workbook::problem::{Place, Problem, Result as BookResult};
 
 use crate::Failure;
 use crate::input::{DASH, Input, is_dash};
@@ -35,6 +38,17 @@ impl Output {
         Ok(Output::Stream)
     }
 
+    /// Refused where it would be the input, which is never written, or an existing file without `--force`.
+    pub fn may_write(&self, input: &Path, force: bool) -> BookResult<()> {
+        let Output::File(path) = self else { return Ok(()) };
+        if !is_dash(input) && same_file(input, path) {
+            let message = format!("the output {} is the input, which is never written", path.display());
+            let problem = Problem::error("output-is-input", Place::default(), message);
+            return Err(problem.hint("give --out another name").into());
+        }
+        may_write(path, force)
+    }
+
     /// As it is shown.
     pub fn shown(&self) -> String {
         match self {
@@ -63,11 +77,17 @@ fn audited_name(input: &Path) -> Result<PathBuf, Failure> {
         )));
     }
     name.push(AUDITED);
-    if let Some(extension) = input.extension() {
+    if let Some(extension) = extension(input) {
         name.push(".");
         name.push(extension);
     }
     Ok(input.with_file_name(name))
+}
+
+/// The extension of an output: the input's, but for one of which only the values are read.
+fn extension(input: &Path) -> Option<&OsStr> {
+    let own = input.extension()?;
+    Some(if OldFormat::has_extension(own) { OsStr::new("xlsx") } else { own })
 }
 
 /// True where `--out` names a file rather than a folder.
@@ -95,10 +115,10 @@ fn output_for(input: &Input, out: Option<&Path>, several: bool) -> Result<Output
         return Output::named(out);
     }
     if names_a_file(out) {
-        let (have, want) = (out.extension(), input.extension());
+        let (have, want) = (out.extension(), extension(input));
         if !is_dash(input) && have.map(|e| e.to_ascii_lowercase()) != want.map(|e| e.to_ascii_lowercase()) {
             return Err(Failure::Message(format!(
-                "--out {}: {} stays .{}, since the extension follows the content",
+                "--out {}: the output of {} is .{}, since the extension follows the content",
                 out.display(),
                 input.display(),
                 want.unwrap_or_default().to_string_lossy()

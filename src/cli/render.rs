@@ -105,29 +105,11 @@ pub fn table(rows: &[Vec<String>]) -> String {
 /// The report on one filled workbook.
 pub fn report(input: &str, output: &str, report: &Report) -> String {
     let mut text = format!("{input} -> {output}\n");
-    for (names, option) in grouped(&report.options) {
-        if names.len() < report.options.len() {
-            text.push_str(&format!("\n{}:\n", names.join(", ")));
-        }
-        text.push_str(&format!("Basis   {}\n        {}\n", option.basis, option.basis_words));
-        text.push_str(&format!("Base    {}\nTiming  {}\n", option.base, option.timing));
-        if let Some(prices) = &option.prices {
-            text.push_str(&format!("Prices  {prices}\n"));
-        }
-    }
-    text.push('\n');
-    let over =
-        report.options.iter().find(|o| o.baseline && report.options.iter().any(|o| o.increment.is_some()));
-    if let Some(baseline) = over {
-        text.push_str(&absolute(report, "As it stands"));
-        text.push('\n');
-        text.push_str(&increments(report, &format!("Over {}", baseline.name)));
-    } else {
-        text.push_str(&absolute(report, "Option"));
-    }
-    text.push('\n');
-    for option in &report.options {
-        text.push_str(&details(option));
+    for own in report.options.chunk_by(|a, b| a.appraisal == b.appraisal) {
+        let appraisal = report.appraisals.iter().find(|a| own[0].appraisal.as_ref() == Some(&a.name));
+        text.extend(appraisal.map(|appraisal| format!("\nAppraisal {}\n\n", appraisal.name)));
+        text.push_str(&options(own));
+        text.extend(appraisal.map(|a| format!("\nVerdict of {}: {}.\n", a.name, a.verdict)));
     }
     text.push_str(&not_valued(&report.not_valued));
     text.push_str(&format!(
@@ -138,6 +120,35 @@ pub fn report(input: &str, output: &str, report: &Report) -> String {
         hence_core::CAUTION
     ));
     escape(&text)
+}
+
+/// The options of one appraisal: on what they are valued, and what each comes to.
+fn options(options: &[OptionReport]) -> String {
+    let mut text = String::new();
+    for (names, option) in grouped(options) {
+        if names.len() < options.len() {
+            text.push_str(&format!("\n{}:\n", names.join(", ")));
+        }
+        text.push_str(&format!("Basis   {}\n        {}\n", option.basis, option.basis_words));
+        text.push_str(&format!("Base    {}\nTiming  {}\n", option.base, option.timing));
+        if let Some(prices) = &option.prices {
+            text.push_str(&format!("Prices  {prices}\n"));
+        }
+    }
+    text.push('\n');
+    let over = options.iter().find(|o| o.baseline && options.iter().any(|o| o.increment.is_some()));
+    if let Some(baseline) = over {
+        text.push_str(&absolute(options, "As it stands"));
+        text.push('\n');
+        text.push_str(&increments(options, &format!("Over {}", baseline.name)));
+    } else {
+        text.push_str(&absolute(options, "Option"));
+    }
+    text.push('\n');
+    for option in options {
+        text.push_str(&details(option));
+    }
+    text
 }
 
 /// The report on one workbook of many: where it went, the verdict, and a line for each option.
@@ -187,22 +198,22 @@ fn grouped(options: &[OptionReport]) -> Vec<(Vec<&str>, &OptionReport)> {
 }
 
 /// The totals of every option as it stands.
-fn absolute(report: &Report, title: &str) -> String {
+fn absolute(options: &[OptionReport], title: &str) -> String {
     let mut rows = vec![headings(title)];
-    rows.extend(report.options.iter().map(|option| totals(&option.name, &option.absolute)));
+    rows.extend(options.iter().map(|option| totals(&option.name, &option.absolute)));
     table(&rows)
 }
 
 /// The totals of every option over the baseline, with its rank by net present value.
-fn increments(report: &Report, title: &str) -> String {
+fn increments(options: &[OptionReport], title: &str) -> String {
     let mut head = headings(title);
     head.push("Rank".to_owned());
     let mut rows = vec![head];
     let npv = |option: &OptionReport| option.totals().npv;
-    for option in &report.options {
+    for option in options {
         let Some(increment) = &option.increment else { continue };
         let mut row = totals(&option.name, increment);
-        row.push((1 + report.options.iter().filter(|other| npv(other) > npv(option)).count()).to_string());
+        row.push((1 + options.iter().filter(|other| npv(other) > npv(option)).count()).to_string());
         rows.push(row);
     }
     table(&rows)

@@ -20,6 +20,7 @@ pub(crate) use checks::{
 };
 pub use domain::Domain;
 pub use parts::Parts;
+pub(crate) use persistent::settled;
 
 use crate::dd::{Dd, exp2, exp2_m1};
 use crate::{Error, ErrorKind, Position, Result, Spec, Timing};
@@ -283,6 +284,23 @@ impl Curve {
     pub fn instantaneous_rate(&self, t: f64) -> Result<f64> {
         self.check("offset", t)?;
         finite_rate(t, self.form.instantaneous(t).hi)
+    }
+
+    /// Under growth that persists or switches, a whole year after which every year has the same continuous rate to within
+    /// rounding, and that rate; none for other curves, and where the years never settle.
+    pub(crate) fn settled(&self) -> Option<(f64, f64)> {
+        match &self.form {
+            Form::Years(years) => years.settled(),
+            _ => None,
+        }
+    }
+
+    /// The curves that a mixture is made of, with their weights.
+    pub(crate) fn components(&self) -> Option<&[(f64, Curve)]> {
+        match &self.form {
+            Form::Mixture(mixture) => Some(mixture.components()),
+            _ => None,
+        }
     }
 
     /// What a reader should be told of the curve, a sentence each: factors that jump up at an edge or rise, which

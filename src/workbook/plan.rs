@@ -40,7 +40,7 @@ impl Plan {
             CellWrite::Number(x) => x.to_string(),
             CellWrite::Text(text) => text.clone(),
             CellWrite::Formula(text, _) => format!("={text}"),
-            CellWrite::DropValue => String::new(),
+            CellWrite::DropValue | CellWrite::Result(_) => String::new(),
         };
         self.writes.entry(at.sheet.clone()).or_default().insert(at.range.first, write);
         self.changes.push(Change { at: at.clone(), role, before, after });

@@ -5,7 +5,7 @@ use std::fmt;
 use serde::{Deserialize, Serialize};
 
 use crate::codes::CODES;
-use crate::references::{Range, quote_sheet};
+use crate::references::{Range, SheetRange, quote_sheet};
 
 /// How bad a problem is.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
@@ -28,17 +28,36 @@ pub struct Place {
     pub range: Option<Range>,
     /// The defined name or heading it goes by.
     pub name: Option<String>,
+    /// The line, of a problem that is in a text of its own: a plan file.
+    pub line: Option<u32>,
 }
 
 impl Place {
     /// Cells of a sheet.
     pub fn cells(sheet: &str, range: Range) -> Self {
-        Place { sheet: Some(sheet.to_owned()), range: Some(range), name: None }
+        Place { sheet: Some(sheet.to_owned()), range: Some(range), ..Place::default() }
     }
 
     /// A defined name, where it has no cells to point at.
     pub fn name(name: &str) -> Self {
-        Place { sheet: None, range: None, name: Some(name.to_owned()) }
+        Place { name: Some(name.to_owned()), ..Place::default() }
+    }
+
+    /// A line of a text.
+    pub fn line(line: u32) -> Self {
+        Place { line: Some(line), ..Place::default() }
+    }
+
+    /// Whether the first of some cells is one of its.
+    pub(crate) fn holds(&self, at: &SheetRange) -> bool {
+        self.sheet.as_ref() == Some(&at.sheet)
+            && self.range.is_some_and(|range| range.contains(at.range.first))
+    }
+
+    /// Its cells without the name they go by: `Sheet1!B2`, for programs.
+    pub fn cells_words(&self) -> String {
+        let name = if self.sheet.is_some() { None } else { self.name.clone() };
+        Place { name, ..self.clone() }.to_string()
     }
 
     /// Adds the defined name or heading in brackets.
@@ -51,6 +70,9 @@ impl Place {
 
 impl fmt::Display for Place {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        if let Some(line) = self.line {
+            return write!(f, "line {line}");
+        }
         match (&self.sheet, self.range, &self.name) {
             (Some(sheet), Some(range), name) => {
                 write!(f, "{}!{range}", quote_sheet(sheet))?;

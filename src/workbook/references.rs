@@ -1,6 +1,7 @@
 //! Cells, ranges and sheet names in A1 notation, and the tokens of formulas.
 
 mod a1;
+mod area;
 mod shift;
 mod target;
 mod token;
@@ -8,6 +9,7 @@ mod token;
 use std::fmt;
 
 pub use a1::{ReferenceError, quote_sheet};
+pub use area::{Apart, Area};
 pub use shift::shift;
 pub use target::{Constant, NameTarget, parse_target};
 pub use token::{Corner, Extent, Reference, Sheets, Spanned, TableRef, Token, Tokens, tokens};

@@ -4,6 +4,7 @@ use hence_core::Payback;
 use serde::{Deserialize, Serialize};
 
 use crate::appraisal::{Appraisal, StreamKind};
+use crate::decide::{Bridge, Rule};
 use crate::outcome::{ChoiceOutcome, Totals};
 use crate::problem::{Problem, Severity};
 use crate::welfare;
@@ -57,6 +58,8 @@ pub struct Exact {
 pub struct OptionReport {
     /// Its name.
     pub name: String,
+    /// Which of several appraisals of the workbook it is of.
+    pub appraisal: Option<String>,
     /// It is the baseline.
     pub baseline: bool,
     /// The canonical basis.
@@ -105,6 +108,10 @@ pub struct OptionReport {
     pub effects: Vec<(String, Option<f64>, Option<f64>)>,
     /// The same under the companion schedule.
     pub companion: Option<Companion>,
+    /// What ranks it among the options.
+    pub decide: Rule,
+    /// From what its workbook held to how it stands now.
+    pub bridge: Bridge,
 }
 
 impl OptionReport {
@@ -114,11 +121,22 @@ impl OptionReport {
     }
 }
 
+/// One of several appraisals in a workbook.
+#[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
+pub struct AppraisalReport {
+    /// Its name, which its options bear too.
+    pub name: String,
+    /// The verdict as written to its audit summary.
+    pub verdict: String,
+}
+
 /// The report on one workbook.
 #[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 pub struct Report {
-    /// Its options.
+    /// Its options; of several appraisals, all of them in order.
     pub options: Vec<OptionReport>,
+    /// The appraisals, where the workbook has several.
+    pub appraisals: Vec<AppraisalReport>,
     /// Everything found.
     pub problems: Vec<Problem>,
     /// Cells written, and cells found filled and compared.
@@ -127,7 +145,9 @@ pub struct Report {
     pub ticked: usize,
     /// Rows of numbers along the years that no role names: heading and cells.
     pub not_valued: Vec<String>,
-    /// The verdict as written to the audit summary.
+    /// Formulas of the workbook that have no result until a spreadsheet program opens the output, by sheet in words.
+    pub awaiting: Vec<String>,
+    /// The verdict as written to the audit summary; of several appraisals, that of all.
     pub verdict: String,
 }
 
@@ -155,6 +175,7 @@ pub(crate) fn option_reports(
         .enumerate()
         .map(|(i, (choice, outcome))| OptionReport {
             name: choice.name.clone(),
+            appraisal: None,
             baseline: appraisal.baseline == Some(i),
             basis: outcome.basis.canonical(),
             declared: None,
@@ -205,6 +226,8 @@ pub(crate) fn option_reports(
                 .map(|(effect, (plain, discounted))| (effect.name.clone(), *plain, *discounted))
                 .collect(),
             companion: companions.get(i).cloned().flatten(),
+            decide: appraisal.decide,
+            bridge: Bridge::default(),
         })
         .collect()
 }

@@ -4,11 +4,11 @@ use std::num::NonZeroUsize;
 use std::path::{Path, PathBuf};
 use std::time::Duration;
 
-use hence_core::{Basis, Catalogue};
+use hence_core::Catalogue;
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::package::{Identity, clear_abandoned, may_write, write_atomically};
 use hence_workbook::problem::Result as BookResult;
-use hence_workbook::shelf::{Done, Order, Record};
+use hence_workbook::shelf::{Done, Order, Record, summary};
 
 use crate::args::{Fill, WriteWhat};
 use crate::input::{self, Input};
@@ -24,20 +24,20 @@ use crate::{Failure, Outcome, ledger, limits};
 /// Fills every workbook; one that fails does not keep the others from being filled.
 pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    for line in &args.against {
-        Basis::parse(line, &catalogue).map_err(|error| super::typed(&error, line))?;
-    }
-    let order = Order { request: request(args)?, force: args.force, resume: args.resume, found: false };
+    let request = request(args, &catalogue)?;
+    let order = Order { request, force: args.overwrite.force, resume: args.resume, found: false };
     let all = gather(&args.books, args.out.as_deref())?;
     let outputs = outputs_for(&all.inputs, args.out.as_deref())?;
     let streams = outputs.contains(&Output::Stream);
-    if streams && args.json {
+    if streams && args.document.json {
         return Err(Failure::Message(
             "--json and a workbook both want standard output\nTry: --out with a file".into(),
         ));
     }
-    if let Some(path) = &args.ledger {
-        may_keep_ledger(path, args, &all.inputs, &outputs)?;
+    for (path, flag) in [(&args.ledger, "--ledger"), (&args.summary, "--summary")] {
+        if let Some(path) = path {
+            may_keep(path, flag, args, &all.inputs, &outputs)?;
+        }
     }
     if !limits::LIMITS_MEMORY && args.memory_limit.is_some() {
         terminal.say("warning", "--memory-limit: this system does not limit the memory of a process");
@@ -53,7 +53,13 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
         .zip(&outputs)
         .map(|(input, output)| (input::shown(&input.path), output.shown()))
         .collect();
-    let how = How { brief: all.walked, aside: streams, json: args.json, ledger: args.ledger.is_some() };
+    let how = How {
+        brief: all.walked,
+        aside: streams,
+        json: args.document.json,
+        ledger: args.ledger.is_some(),
+        summary: args.summary.is_some(),
+    };
     let mut telling = Telling::new(how, terminal, &shown, order.request.sha256(&catalogue));
     telling.ended = ended;
     if streams || all.inputs.iter().any(|input| input::is_dash(&input.path)) {
@@ -70,7 +76,12 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     }
     drop(folder);
     if let Some(path) = &args.ledger {
-        write_atomically(path, telling.lines.as_bytes(), args.force || args.resume).map_err(message)?;
+        write_atomically(path, telling.lines.as_bytes(), args.overwrite.force || args.resume)
+            .map_err(message)?;
+    }
+    if let Some(path) = &args.summary {
+        let bytes = summary::write(&telling.records, path).map_err(message)?;
+        write_atomically(path, &bytes, args.overwrite.force || args.resume).map_err(message)?;
     }
     let audited: Vec<(PathBuf, &str)> = telling
         .audited
@@ -80,22 +91,26 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     for line in skipped_words(&audited) {
         terminal.say("note", &line);
     }
-    if args.json {
+    if args.document.json {
         terminal::print(&Document::text(std::mem::take(&mut telling.books)))?;
     }
     telling.close()
 }
 
-fn request(args: &Fill) -> Result<FillRequest, Failure> {
+fn request(args: &Fill, catalogue: &Catalogue) -> Result<FillRequest, Failure> {
     Ok(FillRequest {
         basis: args.basis.clone(),
-        replace: args.replace.as_deref().map(|text| pair(text, "--replace", "OLD=NEW")).transpose()?,
-        roles: roles(&args.roles)?,
+        base: args.base.clone(),
+        prices: args.prices.clone(),
+        replace: args.replace.as_deref().map(|text| super::pair(text, "--replace", "OLD=NEW")).transpose()?,
+        roles: super::roles(&args.roles)?,
+        plan: super::plan(&args.roles, None)?,
         formulas: args.write == WriteWhat::Formulas,
         replace_formulas: args.replace_formulas,
-        against: args.against.clone(),
-        as_of: args.as_of.clone(),
-        by: args.by.clone(),
+        against: super::against(&args.against, catalogue)?,
+        settle: args.settle,
+        as_of: args.signature.as_of.clone(),
+        by: args.signature.by.clone(),
     })
 }
 
@@ -123,15 +138,21 @@ fn tasks(inputs: &[Input], outputs: &[Output]) -> Vec<Task> {
     pairs.filter_map(task).collect()
 }
 
-/// Whether the ledger may be written, before hours go into what it is to hold.
-fn may_keep_ledger(path: &Path, args: &Fill, inputs: &[Input], outputs: &[Output]) -> Result<(), Failure> {
+/// Whether a ledger or summary may be written, before hours go into what it is to hold.
+fn may_keep(
+    path: &Path,
+    flag: &str,
+    args: &Fill,
+    inputs: &[Input],
+    outputs: &[Output],
+) -> Result<(), Failure> {
     let own = Identity::of(path);
     let output = |output: &Output| matches!(output, Output::File(path) if Identity::of(path) == own);
     if inputs.iter().any(|input| Identity::of(&input.path) == own) || outputs.iter().any(output) {
-        return Err(Failure::Message(format!("--ledger {}: this is one of the workbooks", path.display())));
+        return Err(Failure::Message(format!("{flag} {}: this is one of the workbooks", path.display())));
     }
-    let continued = args.resume && ledger::is_one(path);
-    may_write(path, args.force || continued).map_err(message)
+    let continued = args.resume && (ledger::is_one(path) || summary::is_one(path));
+    may_write(path, args.overwrite.force || continued).map_err(message)
 }
 
 fn message(error: hence_workbook::problem::WorkbookError) -> Failure {
@@ -183,19 +204,4 @@ fn fill_here(
         }
         Err(error) => (Err(error), None),
     }
-}
-
-/// `A=B` in two.
-fn pair(text: &str, flag: &str, shape: &str) -> Result<(String, String), Failure> {
-    match text.split_once('=') {
-        Some((a, b)) if !a.trim().is_empty() && !b.trim().is_empty() => {
-            Ok((a.trim().into(), b.trim().into()))
-        }
-        _ => Err(Failure::Message(format!("{flag} {text}: expected {shape}"))),
-    }
-}
-
-/// The `--role` pairs.
-pub fn roles(texts: &[String]) -> Result<Vec<(String, String)>, Failure> {
-    texts.iter().map(|text| pair(text, "--role", "ROLE=RANGE, as in years=\"Sheet1!C4:Z4\"")).collect()
 }

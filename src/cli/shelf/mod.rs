@@ -4,6 +4,7 @@ pub mod child;
 pub mod gather;
 pub mod pool;
 pub mod telling;
+pub mod values;
 pub mod walk;
 mod wire;
 pub mod worker;

@@ -28,6 +28,8 @@ pub struct How {
     pub json: bool,
     /// Lines of a ledger are kept.
     pub ledger: bool,
+    /// Records are kept for a summary.
+    pub summary: bool,
 }
 
 /// A workbook as it is shown: input, output.
@@ -45,6 +47,8 @@ pub struct Telling<'a> {
     pub books: Vec<FilledBook>,
     /// For the ledger.
     pub lines: String,
+    /// For the summary.
+    pub records: Vec<Record>,
     /// Workbooks that hence had filled before, which a walk passes over.
     pub audited: Vec<usize>,
     /// How the run ends.
@@ -79,6 +83,7 @@ impl<'a> Telling<'a> {
             began: Instant::now(),
             books: Vec::new(),
             lines: String::new(),
+            records: Vec::new(),
             audited: Vec::new(),
             ended: Outcome::Done,
             done: 0,
@@ -124,6 +129,9 @@ impl<'a> Telling<'a> {
             if self.how.json {
                 self.books.push(book);
             }
+        }
+        if self.how.summary {
+            self.records.push(record);
         }
     }
 

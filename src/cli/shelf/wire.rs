@@ -30,13 +30,18 @@ pub fn length(from: &mut impl Read) -> io::Result<u64> {
 
 /// Receives a value.
 pub fn receive<T: DeserializeOwned>(from: &mut impl Read) -> io::Result<T> {
+    Ok(serde_json::from_slice(&receive_bytes(from)?)?)
+}
+
+/// Receives bytes.
+pub fn receive_bytes(from: &mut impl Read) -> io::Result<Vec<u8>> {
     let length = length(from)?;
     if length > MOST {
         return Err(io::ErrorKind::InvalidData.into());
     }
-    let mut text = Vec::new();
-    from.take(length).read_to_end(&mut text)?;
-    Ok(serde_json::from_slice(&text)?)
+    let mut bytes = Vec::new();
+    from.take(length).read_to_end(&mut bytes)?;
+    if (bytes.len() as u64) < length { Err(io::ErrorKind::UnexpectedEof.into()) } else { Ok(bytes) }
 }
 
 #[cfg(test)]

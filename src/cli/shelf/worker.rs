@@ -4,9 +4,10 @@ use std::ffi::OsString;
 use std::io::{BufReader, Read, Write};
 use std::num::NonZeroU64;
 use std::path::{Path, PathBuf};
-use std::process::{Child, ChildStderr, Command, ExitStatus, Stdio};
+use std::process::{Child, ChildStderr, ChildStdin, ChildStdout, Command, ExitStatus, Stdio};
 use std::sync::atomic::{AtomicBool, Ordering};
 use std::sync::{Mutex, MutexGuard, PoisonError};
+use std::thread::JoinHandle;
 use std::time::{Duration, Instant};
 
 use hence_workbook::package::Pending;
@@ -22,6 +23,15 @@ pub struct Limits {
     pub memory: u64,
     /// Time for one workbook.
     pub time: Duration,
+}
+
+impl Default for Limits {
+    fn default() -> Self {
+        Limits {
+            memory: Limits::MEMORY_MB.get() << 20,
+            time: Duration::from_secs(Limits::TIME_SECONDS.get()),
+        }
+    }
 }
 
 impl Limits {
@@ -69,7 +79,7 @@ impl Slot {
     }
 
     /// Waits for the end of a process that has closed its output.
-    fn wait(&self) -> (Option<ExitStatus>, bool) {
+    pub(super) fn wait(&self) -> (Option<ExitStatus>, bool) {
         loop {
             let mut slot = self.lock();
             let Some(running) = &mut *slot else { return (None, false) };
@@ -108,30 +118,18 @@ pub fn work(
     stop: &AtomicBool,
 ) -> Result<Done, WorkbookError> {
     let arguments: [OsString; 6] = [
-        child::WORD.into(),
+        child::FILL.into(),
         std::process::id().to_string().into(),
         limits.memory.to_string().into(),
         schedules.map_or_else(OsString::new, Into::into),
         task.input.clone().into(),
         task.output.clone().into(),
     ];
-    let mut command = Command::new(program().map_err(|error| mishap::not_started(&error))?);
-    command.args(arguments).stdin(Stdio::piped()).stdout(Stdio::piped()).stderr(Stdio::piped());
-    command.env("RUST_BACKTRACE", "0");
-    #[cfg(unix)]
-    {
-        use std::os::unix::process::CommandExt;
-        // Ctrl-C on a terminal goes to this process alone, which ends the others.
-        command.process_group(0);
-    }
-    let mut child = command.spawn().map_err(|error| mishap::not_started(&error))?;
-    let (stdin, stdout, stderr) = (child.stdin.take(), child.stdout.take(), child.stderr.take());
-    *slot.lock() = Some(Running { child, since: Instant::now(), late: false });
+    let Started { stdin, stdout, words } = start(&arguments, slot)?;
     if stop.load(Ordering::SeqCst) {
         // Those that were at work when the run was stopped have been ended; this one was not among them yet.
         slot.end();
     }
-    let words = std::thread::spawn(move || stderr.map(words_of).unwrap_or_default());
 
     let order = Order { found: task.found, ..order.clone() };
     // Its standard input stays open until it has ended: by that it knows that this process lives.
@@ -158,6 +156,32 @@ pub fn work(
         _ if late => Err(mishap::out_of_time(limits.time).into()),
         _ => Err(why(status, &words, limits).into()),
     }
+}
+
+/// A process that was started, in its slot.
+pub(super) struct Started {
+    pub(super) stdin: Option<ChildStdin>,
+    pub(super) stdout: Option<ChildStdout>,
+    /// What it says on standard error, once it has ended.
+    pub(super) words: JoinHandle<String>,
+}
+
+/// Starts a process of this program.
+pub(super) fn start(arguments: &[OsString], slot: &Slot) -> Result<Started, WorkbookError> {
+    let mut command = Command::new(program().map_err(|error| mishap::not_started(&error))?);
+    command.args(arguments).stdin(Stdio::piped()).stdout(Stdio::piped()).stderr(Stdio::piped());
+    command.env("RUST_BACKTRACE", "0");
+    #[cfg(unix)]
+    {
+        use std::os::unix::process::CommandExt;
+        // Ctrl-C on a terminal goes to this process alone, which ends the others.
+        command.process_group(0);
+    }
+    let mut child = command.spawn().map_err(|error| mishap::not_started(&error))?;
+    let (stdin, stdout, stderr) = (child.stdin.take(), child.stdout.take(), child.stderr.take());
+    *slot.lock() = Some(Running { child, since: Instant::now(), late: false });
+    let words = std::thread::spawn(move || stderr.map(words_of).unwrap_or_default());
+    Ok(Started { stdin, stdout, words })
 }
 
 /// Why a process sent less than it should.
@@ -208,7 +232,7 @@ fn words_of(mut stderr: ChildStderr) -> String {
 }
 
 /// Why a process did not finish.
-fn why(status: Option<ExitStatus>, words: &str, limits: &Limits) -> Problem {
+pub(super) fn why(status: Option<ExitStatus>, words: &str, limits: &Limits) -> Problem {
     // What Rust says where memory is refused, before it aborts.
     if words.lines().any(|line| line.starts_with("memory allocation of ") && line.ends_with(" failed")) {
         return mishap::out_of_memory(limits.memory);

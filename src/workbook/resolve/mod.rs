@@ -5,6 +5,7 @@ mod cells;
 mod choices;
 mod counted;
 mod coverage;
+mod dynamic;
 mod find;
 mod groups;
 mod prices;
@@ -23,10 +24,12 @@ use std::rc::Rc;
 use crate::appraisal::{Appraisal, Setting};
 use crate::model::{SheetFacts, Workbook};
 use crate::package::Package;
+use crate::planfile::Part;
 use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
 use crate::reading::{Grid, Sheets};
 use crate::references::{Cell, Range, SheetRange};
 
+pub(crate) use cells::text_as_number;
 pub(crate) use counted::sum_of;
 pub use report::{Found, NamesReport, names};
 pub use series::{SeriesGrowth, growth_of_series};
@@ -39,6 +42,12 @@ pub struct Options<'a> {
     pub roles: &'a [(String, String)],
     /// `--basis`: beats the workbook's.
     pub basis: Option<&'a str>,
+    /// `--base`: beats the workbook's.
+    pub base: Option<&'a str>,
+    /// `--prices`: beats the workbook's price basis.
+    pub prices: Option<&'a str>,
+    /// What a plan says: it beats names, and the command line beats it.
+    pub plan: Option<&'a Part>,
 }
 
 /// Reads what a workbook says of its appraisal.
@@ -54,15 +63,19 @@ pub struct Options<'a> {
 /// being filled.
 pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<Appraisal> {
     let mut context = Context::open(package, book)?;
-    let named = find::find(&mut context, options.roles);
+    if let Some(plan) = options.plan {
+        context.problems.extend(plan.problems.iter().cloned());
+        context.appraisal = plan.appraisal.clone();
+    }
+    let named = find::find(&mut context, options.roles, options.plan);
     let ranges: Vec<SheetRange> =
-        named.iter().filter(|named| !named.too_large()).map(|named| named.at.clone()).collect();
+        named.iter().filter(|named| !named.too_large()).filter_map(find::Named::cells).collect();
     if let Err(error) = context.sheets.load(&ranges) {
         context.problems.extend(error.problems().iter().cloned());
         return Err(context.ended());
     }
     let split = groups::split(&mut context, named);
-    let built = choices::build(&mut context, &split, options.basis);
+    let built = choices::build(&mut context, &split, options);
     if context.failed() {
         return Err(context.ended());
     }
@@ -71,9 +84,9 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
         return Err(context.ended());
     }
     let problems = context.sorted();
-    let choices::Built { axes, choices, baseline } = built;
+    let choices::Built { axes, choices, baseline, decide } = built;
     let settings = std::mem::take(&mut context.settings).into_values().collect();
-    Ok(Appraisal { axes, choices, baseline, settings, coverage, problems, date1904: book.date1904 })
+    Ok(Appraisal { axes, choices, baseline, decide, settings, coverage, problems, date1904: book.date1904 })
 }
 
 /// What every step needs: the workbook, its cells, and the list of what was found wrong.
@@ -84,6 +97,8 @@ struct Context<'a> {
     facts: BTreeMap<String, Rc<SheetFacts>>,
     settings: BTreeMap<(String, Cell), Setting>,
     problems: Vec<Problem>,
+    /// Which of several appraisals of the workbook this is.
+    appraisal: Option<String>,
 }
 
 impl<'a> Context<'a> {
@@ -95,7 +110,8 @@ impl<'a> Context<'a> {
             crate::roles::parse_name(name).is_some()
         };
         let problems = book.problems.iter().filter(ours).cloned().collect();
-        Ok(Context { package, book, sheets, facts: BTreeMap::new(), settings: BTreeMap::new(), problems })
+        let (facts, settings) = (BTreeMap::new(), BTreeMap::new());
+        Ok(Context { package, book, sheets, facts, settings, problems, appraisal: None })
     }
 
     /// What a sheet holds besides values; nothing where it cannot be read, which is reported.

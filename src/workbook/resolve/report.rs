@@ -36,7 +36,7 @@ pub struct NamesReport {
 /// **Errors**: only where the workbook cannot be read at all; names that cannot be used are listed as slips.
 pub fn names(package: &Package, book: &Workbook) -> Result<NamesReport> {
     let mut context = Context::open(package, book)?;
-    let named = find::find(&mut context, &[]);
+    let named = find::find(&mut context, &[], None);
     let split = groups::split(&mut context, named);
     let mut report = NamesReport::default();
     let only = split.groups.len() == 1 && split.shared.is_empty();

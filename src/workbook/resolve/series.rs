@@ -97,7 +97,7 @@ fn place(named: &Named, range: Range) -> Place {
 fn named(context: &mut Context, cells: &str) -> Checked<Named> {
     let at = located(context, Place::name(cells), cells)?;
     let name = RoleName { role: Role::Consumption, stream: None, option: None };
-    let mut named = Named { name, from: cells.to_owned(), at, scope: None };
+    let mut named = Named { name, from: cells.to_owned(), at, scope: None, stated: None };
     shrink_to_merged(context, &mut named);
     match whole(&named) {
         Some(problem) => Err(problem.into()),

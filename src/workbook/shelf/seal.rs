@@ -4,10 +4,9 @@
 //! It comes last in the file. Its seal is a hash of the file without it, so that both can be made again and compared.
 
 use serde::{Deserialize, Serialize};
-use sha2::{Digest, Sha256};
 
 use super::Record;
-use crate::package::{Changes, Package, edit_content_types};
+use crate::package::{Changes, Package, edit_content_types, sha256};
 use crate::problem::{Place, Problem, Result};
 
 /// The part.
@@ -22,11 +21,6 @@ const TYPES: &str = "[Content_Types].xml";
 struct Sealed {
     seal: String,
     record: Record,
-}
-
-/// SHA-256 in lower-case hexadecimal.
-pub fn sha256(bytes: &[u8]) -> String {
-    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
 /// Makes room for the part in what is to become of a package: an earlier one leaves, and its content type is listed.

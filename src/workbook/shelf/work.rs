@@ -8,12 +8,13 @@ use serde::{Deserialize, Serialize};
 use super::{Record, record_of, sha256};
 use crate::fill::{FillRequest, fill};
 use crate::model::Workbook;
+use crate::older;
 use crate::own::own_sheets;
 use crate::package::{Package, may_replace, same_file};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 
 /// The extensions of the workbooks that are read, as a walk through folders finds them.
-pub const EXTENSIONS: [&str; 2] = ["xlsx", "xlsm"];
+pub const EXTENSIONS: [&str; 5] = ["xlsx", "xlsm", "xls", "xlsb", "ods"];
 
 /// What is to be done, besides where from and where to.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
@@ -63,7 +64,7 @@ fn attempt(
     let bytes = Package::read(input)?;
     let hash = sha256(&bytes);
     *input_sha256 = Some(hash.clone());
-    let package = Package::from_bytes(&Package::name_of(input), bytes)?;
+    let package = older::open(&Package::name_of(input), bytes)?;
     if same_file(input, output) {
         return Err(output_is_input(output));
     }
