@@ -1,4 +1,5 @@
-//! Benchmarks: factors and calls per second, draws, cells of LibreOffice, and filling workbooks of a million cells.
+//! Benchmarks: factors and calls per second, draws, cells of LibreOffice, filling workbooks of a million cells and a
+//! shelf of a thousand small ones.
 //! `bash tests/bench/run` writes RESULTS.md.
 
 mod arrays;
@@ -9,6 +10,7 @@ mod books;
 mod calc;
 mod calls;
 mod draws;
+mod shelf;
 
 use std::io::Write;
 use std::path::Path;
@@ -28,6 +30,8 @@ fn main() {
         // A fill in a process of its own, so that its peak memory is its own.
         Some("fill") => fill(Path::new(&args[2])),
         Some("calc") => calc::calc(),
+        Some("shelf") => shelf::shelf(),
+        Some("make-shelf") => shelf::make(Path::new(&args[2]), args[3].parse().expect("workbooks")),
         Some("make") => {
             books::make(
                 Path::new(&args[2]),
@@ -42,6 +46,7 @@ fn main() {
             draws::draws();
             calc::calc();
             fills();
+            shelf::shelf();
         }
     }
 }
