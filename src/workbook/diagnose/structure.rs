@@ -61,7 +61,7 @@ impl<'s, 'p> Look<'s, 'p> {
             let is_npv = |t: &&Target| matches!(t.role, TargetRole::Npv | TargetRole::PvTotal(None));
             let target =
                 choice.targets.iter().find(|t| is_npv(t) && matches!(t.held[0], Held::Formula { .. }));
-            target.map(|target| Slopes::of(cells.each(&target.at.hull())[0], &cells, &HashSet::new()))
+            target.map(|target| Slopes::of(cells.each(&target.at)[0], &cells, &HashSet::new()))
         };
         let npvs = seen.appraisal.choices.iter().map(npv).collect();
         Ok(Look { seen, cells, lines, npvs })
@@ -105,7 +105,7 @@ impl<'s, 'p> Look<'s, 'p> {
             let outcome = &self.seen.outcomes[c];
             let shared = |t: &&Target| t.role == TargetRole::Factor;
             for target in choice.targets.iter().filter(shared) {
-                if let Some(i) = self.cells.each(&target.at.hull()).iter().position(|at| *at == cell) {
+                if let Some(i) = self.cells.each(&target.at).iter().position(|at| *at == cell) {
                     added[c] += by * outcome.net.get(i).copied().unwrap_or(0.0);
                     touched = true;
                 }
@@ -120,7 +120,7 @@ impl<'s, 'p> Look<'s, 'p> {
         choices.flat_map(move |(c, choice)| {
             let streams = choice.streams.iter().enumerate();
             streams.filter_map(move |(s, stream)| {
-                let year = self.cells.each(&stream.at.hull()).iter().position(|at| *at == cell)?;
+                let year = self.cells.each(&stream.at).iter().position(|at| *at == cell)?;
                 Some((c, s, year))
             })
         })
