@@ -52,7 +52,8 @@ pub fn findings(seen: &Seen, rows: &mut Vec<Series>, known: impl Fn(&SheetRange)
         let found = |cell: &Compared| {
             findings.iter().any(|finding: &Finding| finding.place.holds(&cell.at)) || known(&cell.at)
         };
-        if let Some(total) = total(seen, c, rows, found) {
+        // A reading that is more likely met by chance than not says nothing.
+        if let Some(total) = total(seen, c, rows, found).filter(|total| total.chance < 0.5) {
             findings.push(of_total(seen, &total));
             rows.extend(total.rows);
         }
@@ -248,7 +249,7 @@ fn some_off(seen: &Seen, row: &Series, off: &[usize]) -> Finding {
 
 /// A row that nothing gives. Present values over flows are factors only if they look like such.
 fn unknown(seen: &Seen, row: &Series) -> Finding {
-    let near = row.points.iter().all(|p| (0.2..=5.0).contains(&(p.found / p.declared)));
+    let near = row.points.iter().all(|p| p.found > 0.0 && p.found < 1.6);
     let falls = row.points.windows(2).filter(|pair| pair[1].found <= pair[0].found).count();
     let like = near && (row.ranges.len() > 1 || 2 * falls > row.points.len());
     let kind = if row.source != Source::Present || like { Kind::NoKnownRate } else { Kind::Differs };
