@@ -118,10 +118,13 @@ fn exact(shown: &Shown) -> bool {
     }
 }
 
-/// A row with the factors that its blank and waiting cells would have.
+/// A row with the factors that its blank and waiting cells would have, and with all digits of those that were rounded.
 fn completed(seen: &Seen, row: &Series, reading: &Reading) -> Series {
     let outcome = &seen.outcomes[row.users[0].0];
     let mut row = row.clone();
+    for point in row.points.iter_mut().filter(|point| point.slack > 0.0) {
+        point.found = reading.factor(point).unwrap_or(point.found);
+    }
     for (index, t) in outcome.offsets.iter().enumerate() {
         let point =
             Point { range: 0, index, t: *t, declared: outcome.factors[index], found: 0.0, slack: 0.0 };
@@ -272,7 +275,12 @@ fn with(row: &Series, factor: impl Fn(&Point) -> Option<f64>) -> Vec<Point> {
 fn place(row: &Series) -> Place {
     let first = &row.ranges[0];
     let mut range = first.range;
-    for other in row.ranges.iter().skip(1).filter(|other| other.sheet == first.sheet) {
+    let mut others: Vec<&SheetRange> = row.ranges.iter().filter(|other| other.sheet == first.sheet).collect();
+    others.sort();
+    // Those before the first range join it from the nearest on.
+    let at = others.iter().position(|other| *other == first).unwrap_or(0);
+    let (before, after) = others.split_at(at);
+    for other in before.iter().rev().chain(after) {
         let hull = range.hull(&other.range);
         if hull.len() == range.len() + other.range.len() {
             range = hull;
