@@ -132,6 +132,12 @@ pub struct Check {
     /// Print one JSON document
     #[arg(long)]
     pub json: bool,
+    /// Write a marked copy (.xlsx, .xlsm): the findings on a sheet of their own and as notes on their cells; one workbook only
+    #[arg(long, value_name = "FILE")]
+    pub out: Option<PathBuf>,
+    /// Replace an existing output
+    #[arg(long)]
+    pub force: bool,
 }
 
 #[derive(Debug, Args)]

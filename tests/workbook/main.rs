@@ -13,6 +13,7 @@ mod graft;
 mod hostile;
 mod large;
 mod libreoffice;
+mod marked;
 mod memory;
 mod model;
 mod names_edit;

@@ -1,9 +1,10 @@
 //! `hence check`: what is wrong with workbooks, against what their declared basis gives.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 
 use hence_workbook::check::{CheckReport, check};
 use hence_workbook::findings::Finding;
+use hence_workbook::marked::mark_file;
 use hence_workbook::report::Status;
 use serde::Serialize;
 
@@ -52,6 +53,9 @@ pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
     let catalogue = super::catalogue(schedules)?;
     let roles = super::fill::roles(&args.roles)?;
     let paths = input::books(&args.books)?;
+    if let Some(out) = &args.out {
+        one_output(&paths, out)?;
+    }
     let mut ended = Outcome::Done;
     let (mut books, mut texts) = (Vec::new(), Vec::new());
     let progress = Progress::start();
@@ -59,12 +63,21 @@ pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
         let shown = input::shown(path);
         let of = if paths.len() > 1 { format!(" ({} of {})", i + 1, paths.len()) } else { String::new() };
         progress.doing(&format!("checking {shown}{of}"));
-        match input::open(path).and_then(|package| check(&package, &roles, &catalogue)) {
+        let checked_book = input::open(path).and_then(|package| {
+            let report = check(&package, &roles, &catalogue)?;
+            if let Some(out) = &args.out {
+                let path = (!input::is_dash(path)).then_some(path.as_path());
+                mark_file(&package, &report, path, out, args.force)?;
+            }
+            Ok(report)
+        });
+        match checked_book {
             Ok(report) => {
                 render::problems(terminal, &shown, &report.problems);
                 let outcome = if report.agrees() { Outcome::Done } else { Outcome::Wrong };
                 ended = ended.max(outcome);
-                texts.push(text(&shown, &report));
+                let marked = args.out.as_ref().map(|out| format!("{shown} -> {}\n", out.display()));
+                texts.push(text(&shown, &report) + &escape(&marked.unwrap_or_default()));
                 books.push(checked(shown, &report));
             }
             Err(error) => {
@@ -88,6 +101,21 @@ pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
     drop(progress);
     terminal::print(&if args.json { Document::text(books) } else { texts.join("\n") })?;
     Ok(ended)
+}
+
+/// A marked copy is of one workbook, and a workbook.
+fn one_output(books: &[PathBuf], out: &Path) -> Result<(), Failure> {
+    let kind = out.extension().unwrap_or_default().to_ascii_lowercase();
+    if kind != "xlsx" && kind != "xlsm" {
+        let message = format!("--out {}: expected a file that ends in .xlsx or .xlsm", out.display());
+        return Err(Failure::Message(message));
+    }
+    if books.len() > 1 {
+        let message =
+            format!("--out {} is one file, and {} workbooks are checked", out.display(), books.len());
+        return Err(Failure::Message(format!("{message}\nTry: check each by itself, with --out of its own")));
+    }
+    Ok(())
 }
 
 fn checked(input: String, report: &CheckReport) -> CheckedBook {

@@ -7,6 +7,7 @@ use super::{Compared, Standing};
 use crate::appraisal::{Held, StreamKind, Target, TargetRole};
 use crate::clock::label_words;
 use crate::findings::{Finding, Kind};
+use crate::patch::Cached;
 use crate::problem::Place;
 
 /// A total has to miss what the basis gives by so many times its tolerance before a reading of it says anything.
@@ -85,12 +86,17 @@ fn explained(look: &Look, compared: &Compared, told: &[Finding]) -> bool {
 fn read(look: &Look, compared: &Compared, target: &Target, held: f64) -> Option<Finding> {
     let c = compared.choice;
     let choice = &look.seen.appraisal.choices[c];
-    // Over a baseline, or with tails, the total holds more than the flows of these streams.
     let own = choice.targets.iter().find(|t| t.role == TargetRole::Factor);
     let own: Option<Vec<f64>> = own.and_then(|t| t.held.iter().map(Held::number).collect());
     let tolerance = compared.tolerance.max(rounding(held));
+    let Cached::Number(expected) = compared.expected else { return None };
     let mut bases = vec![Totals::new(look, c, target, None)?];
     bases.extend(own.and_then(|own| Totals::new(look, c, target, Some(&own))));
+    // Over a baseline a total holds that of the baseline, too.
+    let beside = expected - bases[0].whole;
+    if beside.abs() > 1e-9 * bases[0].whole.abs().max(expected.abs()) {
+        bases.iter_mut().for_each(|totals| totals.whole += beside);
+    }
     let right =
         |totals: &Totals| (held - totals.whole).abs() <= CLEAR * tolerance.max(1e-9 * totals.whole.abs());
     // What follows from the factors beside it is right for them.
@@ -146,10 +152,6 @@ impl<'a> Totals<'a> {
     fn new(look: &Look<'a, '_>, c: usize, target: &'a Target, factors: Option<&[f64]>) -> Option<Self> {
         let choice = &look.seen.appraisal.choices[c];
         let outcome = &look.seen.outcomes[c];
-        let npv = matches!(target.role, TargetRole::Npv | TargetRole::PvTotal(None));
-        if npv && look.seen.appraisal.baseline.is_some() {
-            return None;
-        }
         let mut parts = Vec::new();
         for (s, stream) in choice.streams.iter().enumerate() {
             let side = match (&target.role, stream.kind) {
