@@ -55,7 +55,7 @@ pub(super) fn unit_of(text: &str) -> Option<f64> {
         lower.split(|c: char| c.is_whitespace() || matches!(c, '(' | ')' | '[' | ']' | ',' | ';' | ':'))
     {
         let bare = word.trim_matches(|c: char| matches!(c, '\'' | '’' | '‘' | '.' | '"'));
-        let money = bare.trim_start_matches(|c: char| matches!(c, '£' | '$' | '€')).trim_end_matches("/yr");
+        let money = bare.trim_start_matches(['£', '$', '€']).trim_end_matches("/yr");
         let symbol = money.len() < bare.len();
         let unit = match money {
             "thousand" | "thousands" | "000" | "000s" | "1000s" => Some(1e3),
