@@ -472,3 +472,24 @@ fn sheets_of_other_appraisals_are_not_told_of_as_left_out() {
     let one = plan.only(Some("North".into()));
     assert!(!alike(&filled(&book.bytes(), Some(&one)).report));
 }
+
+#[test]
+fn a_fill_by_appraisals_takes_the_place_of_one_without_and_the_other_way_round() {
+    let (book, plan) = two();
+    let one = parsed(
+        "[settings]\nbase = 2025\nbasis = 0.035\n[roles]\nyears = \"North!B4:D4\"\ncost_works = \"North!B5:D5\"\n\
+         benefit_access = \"North!B6:D6\"\nfactor = \"North!B8:D8\"\nnpv = \"North!B9\"\n",
+    );
+    let first = filled(&book.bytes(), Some(&one));
+    assert_eq!(sheets(&first.bytes).len(), 10);
+    // The sheets of a fill without appraisals go, and what it filled is filled again.
+    let both = filled(&first.bytes, Some(&plan));
+    assert_eq!((both.report.filled, both.report.verdict.as_str()), (8, VERDICT_AGREES));
+    assert!(!sheets(&both.bytes).contains(&"Discounting".to_owned()));
+    assert_eq!(sheets(&both.bytes).len(), 17);
+    // Those of appraisals stay beside those of a fill without: nothing says that they are the same.
+    let again = filled(&both.bytes, Some(&one));
+    assert_eq!((again.report.filled, again.report.verdict.as_str()), (4, VERDICT_AGREES));
+    assert_eq!(sheets(&again.bytes).len(), 24);
+    assert_eq!(named(&again.bytes, "hence_verdict_south"), VERDICT_AGREES);
+}
