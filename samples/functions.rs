@@ -10,6 +10,7 @@ use zip::write::SimpleFileOptions;
 
 const BASE: f64 = 2026.0;
 const YEARS: usize = 61;
+const RAMSEY: &str = "preference 1.5%, elasticity 1, growth 2%";
 /// The row of the first year.
 const FIRST: usize = 7;
 
@@ -123,6 +124,8 @@ fn cells() -> Vec<Placed> {
     put('B', 3, style::INPUT, text("uk-2003"));
     put('A', 4, style::PLAIN, text("Base year"));
     put('B', 4, style::INPUT, Cell::Number(BASE));
+    put('A', 5, style::PLAIN, text("A rate by its parts"));
+    put('B', 5, style::INPUT, text(RAMSEY));
     for (column, heading) in [
         ('A', "Year"),
         ('B', "Offset"),
@@ -258,12 +261,11 @@ fn cells() -> Vec<Placed> {
         "HENCE.REAL(6%,2%)".into(),
         answer("REAL", &[number(0.06), number(0.02)]),
     );
-    let line = "preference 1.5%, elasticity 1, growth 2%";
     result(
         "Growth at which it is worth nothing",
         style::PERCENT,
-        format!("HENCE.SWITCH(\"{line}\",\"growth\",{},{},$B$4)", range('A'), range('E')),
-        answer("SWITCH", &[one(text(line)), one(text("growth")), years(), net(), base()]),
+        format!("HENCE.SWITCH($B$5,\"growth\",{},{},$B$4)", range('A'), range('E')),
+        answer("SWITCH", &[one(text(RAMSEY)), one(text("growth")), years(), net(), base()]),
     );
     result(
         "Multiple of the costs that it could bear",
@@ -271,12 +273,12 @@ fn cells() -> Vec<Placed> {
         format!("HENCE.MULTIPLIER(J{},-J{FIRST})", FIRST + 2),
         answer("MULTIPLIER", &[one(value(net()).remove(0)), one(negative(value(costs()).remove(0)))]),
     );
-    let parts = ["uniform 0.5% to 1.5%", "uniform 1 to 1.5", "normal mean 2% sd 0.5%"];
+    let elasticity = "uniform 1 to 1.5";
     result(
         "Mean value where the rate is uncertain",
         style::AMOUNT,
-        format!("HENCE.DRAWS(\"{}\",{},{},$B$4)", parts.join("\",\""), range('A'), range('E')),
-        answer("DRAWS", &[&parts.map(|part| one(text(part)))[..], &[years(), net(), base()]].concat()),
+        format!("HENCE.DRAWS(1.5%,\"{elasticity}\",2%,{},{},$B$4)", range('A'), range('E')),
+        answer("DRAWS", &[number(0.015), one(text(elasticity)), number(0.02), years(), net(), base()]),
     );
     result(
         "Instantaneous rate in year 60",

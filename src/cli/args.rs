@@ -204,14 +204,20 @@ pub enum WriteWhat {
 
 #[derive(Debug, Args)]
 pub struct Check {
-    #[command(flatten)]
-    pub source: Source,
+    /// Workbooks, and folders of them; - reads one from standard input
+    #[arg(value_name = "BOOK|DIR", required = true)]
+    pub books: Vec<PathBuf>,
     #[command(flatten)]
     pub roles: Roles,
     #[command(flatten)]
     pub of: OfSeveral,
     #[command(flatten)]
     pub document: Document,
+    /// Write a marked copy (.xlsx, .xlsm): the findings on a sheet of their own and as notes on their cells; one workbook only
+    #[arg(long, value_name = "FILE")]
+    pub out: Option<PathBuf>,
+    #[command(flatten)]
+    pub overwrite: Overwrite,
 }
 
 #[derive(Debug, Args)]

@@ -1,19 +1,21 @@
 //! What the system does for a run: limits on a process, its end with its parent, signals. The only unsafe code of the
-//! command line stands here. Where the system is no Unix, there are no limits and no signals.
+//! command line stands here. Memory is limited under Linux; signals are those of a Unix.
 
 /// Whether this system can limit the memory of a process.
 pub const LIMITS_MEMORY: bool = cfg!(target_os = "linux");
 
-/// From now on this process has at most so many bytes of address space: what asks for more is refused, and ends. A
-/// program that it starts may lift the limit for itself.
+/// From now on this process has at most so many bytes of address space: what asks for more is refused, and ends, without an
+/// image of its memory on the disk. A program that it starts may lift the limit for itself.
 #[cfg(target_os = "linux")]
 pub fn limit_memory(bytes: u64) {
-    let mut limit = libc::rlimit { rlim_cur: 0, rlim_max: 0 };
-    // SAFETY: getrlimit writes the limit and setrlimit only reads it; it lives until both return.
-    unsafe {
-        if libc::getrlimit(libc::RLIMIT_AS, &raw mut limit) == 0 {
-            limit.rlim_cur = bytes.min(limit.rlim_max);
-            libc::setrlimit(libc::RLIMIT_AS, &raw const limit);
+    for (resource, most) in [(libc::RLIMIT_AS, bytes), (libc::RLIMIT_CORE, 0)] {
+        let mut limit = libc::rlimit { rlim_cur: 0, rlim_max: 0 };
+        // SAFETY: getrlimit writes the limit and setrlimit only reads it; it lives until both return.
+        unsafe {
+            if libc::getrlimit(resource, &raw mut limit) == 0 {
+                limit.rlim_cur = most.min(limit.rlim_max);
+                libc::setrlimit(resource, &raw const limit);
+            }
         }
     }
 }

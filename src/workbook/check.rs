@@ -1,9 +1,10 @@
-//! What a workbook holds in its targets against what its declared basis gives.
+//! What a workbook holds in its targets against what its declared basis gives, and what kind of mistake that shows.
 
 use hence_core::Catalogue;
 
 use crate::appraisal::Held;
-use crate::diagnose::{Compared, Seen, Standing};
+use crate::diagnose::{self, Compared, Seen, Standing};
+use crate::findings::Finding;
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::patch::Cached;
@@ -38,6 +39,8 @@ pub struct CheckReport {
     pub agree: usize,
     /// Every cell that does not.
     pub differences: Vec<Difference>,
+    /// The mistakes behind them, and others; what follows from one is not listed again.
+    pub findings: Vec<Finding>,
     /// Blank targets.
     pub not_filled: Vec<Place>,
     /// Warnings, and cells that could not be compared.
@@ -45,9 +48,9 @@ pub struct CheckReport {
 }
 
 impl CheckReport {
-    /// Whether all filled cells agree.
+    /// Whether nothing is wrong.
     pub fn agrees(&self) -> bool {
-        self.differences.is_empty() && self.problems.iter().all(|p| p.severity != Severity::Error)
+        self.findings.is_empty() && self.problems.iter().all(|p| p.severity != Severity::Error)
     }
 
     /// For the report.
@@ -67,21 +70,63 @@ pub struct CheckRequest {
 
 /// Checks one workbook; nothing is written.
 ///
+/// Years and signs that keep it from being valued are findings, and are set right in memory so that the rest is checked, too.
+///
 /// # Errors
-/// Everything that keeps the workbook from being read and valued, each with its cell.
+/// Everything else that keeps the workbook from being read and valued, each with its cell.
 pub fn check(package: &Package, request: &CheckRequest, catalogue: &Catalogue) -> Result<CheckReport> {
     let problems = preflight(package)?;
     let book = Workbook::read(package)?;
-    let mut checked = CheckReport { agree: 0, differences: Vec::new(), not_filled: Vec::new(), problems };
+    let mut checked = CheckReport {
+        agree: 0,
+        differences: Vec::new(),
+        findings: Vec::new(),
+        not_filled: Vec::new(),
+        problems,
+    };
     let parts = match &request.plan {
         Some(plan) => plan.parts(&book)?.into_iter().map(Some).collect(),
         None => vec![None],
     };
     for part in parts {
         let options = Options { roles: &request.roles, plan: part.as_ref(), ..Options::default() };
-        report(&Seen::look(package, &book, &options, catalogue)?, &mut checked);
+        check_appraisal(package, &book, &options, catalogue, &mut checked)?;
     }
     Ok(checked)
+}
+
+/// Checks one appraisal of a workbook.
+fn check_appraisal(
+    package: &Package,
+    book: &Workbook,
+    options: &Options,
+    catalogue: &Catalogue,
+    checked: &mut CheckReport,
+) -> Result<()> {
+    let error = match Seen::look(package, book, options, catalogue) {
+        Ok(seen) => {
+            checked.findings.extend(diagnose::findings(&seen, Vec::new(), |_| false)?);
+            report(&seen, checked);
+            return Ok(());
+        }
+        Err(error) => error,
+    };
+    if let Some(mended) = diagnose::mend(package, book, options.roles, error.problems())? {
+        let book = Workbook::read(&mended.package)?;
+        if let Ok(seen) = Seen::look(&mended.package, &book, options, catalogue) {
+            let found = mended.findings(&seen);
+            checked.findings.extend(diagnose::findings(&seen, found, |finding| mended.repeats(finding))?);
+            report(&seen, checked);
+            return Ok(());
+        }
+    }
+    let findings = diagnose::unvalued(error.problems());
+    if findings.is_empty() {
+        return Err(error);
+    }
+    checked.findings.extend(findings);
+    checked.problems.extend(error.problems().iter().cloned());
+    Ok(())
 }
 
 /// The comparison cell by cell. What was said of the workbook for another appraisal of it is not said again.

@@ -5,7 +5,7 @@ use std::fmt;
 use serde::{Deserialize, Serialize};
 
 use crate::codes::CODES;
-use crate::references::{Area, Range, quote_sheet};
+use crate::references::{Area, Range, SheetRange, quote_sheet};
 
 /// How bad a problem is.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
@@ -51,6 +51,18 @@ impl Place {
     /// A line of a text.
     pub fn line(line: u32) -> Self {
         Place { line: Some(line), ..Place::default() }
+    }
+
+    /// Whether the first of some cells is one of its.
+    pub(crate) fn holds(&self, at: &SheetRange) -> bool {
+        self.sheet.as_ref() == Some(&at.sheet)
+            && self.range.is_some_and(|range| range.contains(at.range.first))
+    }
+
+    /// Its cells without the name they go by: `Sheet1!B2`, for programs.
+    pub fn cells_words(&self) -> String {
+        let name = if self.sheet.is_some() { None } else { self.name.clone() };
+        Place { name, ..self.clone() }.to_string()
     }
 
     /// Adds the defined name or heading in brackets.

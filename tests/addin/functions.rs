@@ -392,6 +392,7 @@ fn draws_give_a_row_for_each_option() {
     let years = || row(numbers([2026.0, 2027.0]));
     let answer = sheet("DRAWS", &[n(0.01), n(1.0), growth(), years(), flows(), n(2026.0)]);
     assert_eq!((answer.rows(), answer.columns()), (2, 9));
+    let all_cells = answer.cells().to_vec();
     let all = found(&answer);
     let (first, second) = all.split_at(9);
     // Share above 0 and first place are the quarter of draws at 2%, within four standard errors.
@@ -417,6 +418,10 @@ fn draws_give_a_row_for_each_option() {
     assert_eq!((answer.rows(), answer.columns()), (5, 2));
     assert_eq!(answer, sheet("DRAWS", &given(None)));
     assert_ne!(answer, sheet("DRAWS", &given(n(2.0))));
+    // So they do for one option.
+    let one = [n(0.01), n(1.0), growth(), column(numbers([0.0, 1.0])), column(numbers([-99.0, 102.0]))];
+    let one = sheet("DRAWS", &one);
+    assert_eq!((one.rows(), one.columns(), &one.cells()[0]), (9, 1, &all_cells[0]));
     // Nothing is uncertain: every draw has the one value.
     let sure = found(&sheet(
         "DRAWS",

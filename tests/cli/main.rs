@@ -15,6 +15,7 @@ mod plan;
 mod rate;
 mod readme;
 mod schedules;
+mod shelf;
 mod start;
 mod targets;
 mod windows;

@@ -79,6 +79,15 @@ fn try_one(file: &Path, prepare: Prepare) -> Result<Option<(Vec<u8>, Counts)>> {
     Ok(Some((filled.bytes, counts)))
 }
 
+/// A file with an appraisal in it, on a sheet of its own and on one of its sheets, and the roles; for other tests.
+pub fn prepared(file: &Path) -> Vec<(Package, Vec<(String, String)>)> {
+    let Ok(original) = Package::open(file) else { return Vec::new() };
+    let made = [on_a_sheet as Prepare, in_a_sheet]
+        .into_iter()
+        .filter_map(|prepare| prepare(&original).ok().flatten());
+    made.map(|prepared| (prepared.package, prepared.roles)).collect()
+}
+
 fn try_all(files: &[PathBuf], folder: &Path, refused: &[Refusal]) -> (Vec<Row>, Vec<String>) {
     let (mut rows, mut faults) = (Vec::new(), Vec::new());
     for file in files {

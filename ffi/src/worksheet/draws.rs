@@ -45,10 +45,11 @@ pub(super) fn run(arguments: &Arguments<'_>) -> Outcome<Range<'static>> {
             numbers.iter().chain(&value.percentiles).map(|number| cell(Ok(*number))).collect()
         })
         .collect();
-    Ok(beside(&each, streams.columns > 1))
+    let years_run_down = arguments.required(3).rows() > 1;
+    Ok(beside(&each, years_run_down))
 }
 
-/// A row for each stream, or a column.
+/// A row for each stream, or a column where the years run down.
 fn beside(each: &[Vec<Cell<'static>>], down: bool) -> Range<'static> {
     let (streams, figures) = (each.len(), each[0].len());
     let cells = |across: usize, along: usize| if down { &each[along][across] } else { &each[across][along] };

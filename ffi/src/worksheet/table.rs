@@ -200,7 +200,7 @@ pub static FUNCTIONS: &[Function] = &[
     },
     Function {
         name: "DRAWS",
-        help: "Net present values under seeded draws of the rate, preference + hazard + elasticity x growth. For each stream of flows its mean, standard deviation, share above 0, share in which it is first alone, and percentiles.",
+        help: "Net present values under seeded draws of the rate, preference + hazard + elasticity x growth. For each stream a row (a column where years run down): mean, standard deviation, share above 0, share in which it is first alone, percentiles.",
         arguments: &[
             needed(
                 "preference",

@@ -1,17 +1,21 @@
 //! What a run says: problems and reports in the order of the inputs, how far it is, and how it ended.
 
+use std::collections::BTreeMap;
 use std::time::Instant;
 
-use hence_workbook::problem::{Severity, WorkbookError};
+use hence_workbook::problem::{Problem, Severity, WorkbookError};
 use hence_workbook::report::Status;
 use hence_workbook::shelf::{Done, Record};
 
 use super::pool::Listener;
 use crate::json::FilledBook;
-use crate::numbers::count;
+use crate::numbers;
 use crate::progress::Progress;
 use crate::terminal::{self, Terminal};
 use crate::{Failure, Outcome, ledger, render};
+
+/// Warnings of one kind that are told where workbooks are many.
+const MOST_OF_A_KIND: usize = 3;
 
 /// What is to be said and kept.
 #[derive(Clone, Copy, Debug)]
@@ -53,6 +57,8 @@ pub struct Telling<'a> {
     reports: usize,
     filled: usize,
     kept: usize,
+    /// How many there were of a kind, where they are told in brief.
+    warnings: BTreeMap<&'static str, usize>,
     /// Names and reasons.
     failed: Vec<String>,
     wrong: Vec<String>,
@@ -84,6 +90,7 @@ impl<'a> Telling<'a> {
             reports: 0,
             filled: 0,
             kept: 0,
+            warnings: BTreeMap::new(),
             failed: Vec::new(),
             wrong: Vec::new(),
             broken: None,
@@ -96,8 +103,7 @@ impl<'a> Telling<'a> {
         record.input.clone_from(&input);
         let mut problems = record.report.problems.clone();
         if self.how.brief {
-            // Notes stand on the audit sheets and in the JSON document.
-            problems.retain(|problem| problem.severity != Severity::Note);
+            problems.retain(|problem| self.is_told(problem));
         }
         render::problems(self.terminal, &input, &problems);
         // What stands in the list at the end: the first error, without what to do.
@@ -126,6 +132,19 @@ impl<'a> Telling<'a> {
         }
         if self.how.summary {
             self.records.push(record);
+        }
+    }
+
+    /// Of many workbooks, the first warnings of a kind are told, and no notes: the audit sheets hold all.
+    fn is_told(&mut self, problem: &Problem) -> bool {
+        match problem.severity {
+            Severity::Error => true,
+            Severity::Warning => {
+                let count = self.warnings.entry(problem.code).or_insert(0);
+                *count += 1;
+                *count <= MOST_OF_A_KIND
+            }
+            Severity::Note => false,
         }
     }
 
@@ -166,10 +185,19 @@ impl<'a> Telling<'a> {
     pub fn close(self) -> Result<Outcome, Failure> {
         self.progress.pause();
         let total = self.shown.len() - self.audited.len();
+        for (code, count) in &self.warnings {
+            if let Some(more @ 1..) = count.checked_sub(MOST_OF_A_KIND) {
+                let all = "--ledger, --json and the audit sheets hold all";
+                self.terminal.say(
+                    "warning",
+                    &format!("{} of the kind {code}; {all}", numbers::count(more, "more warning")),
+                );
+            }
+        }
         if total > 1 {
             let before =
                 if self.kept > 0 { format!(", {} filled before and kept", self.kept) } else { String::new() };
-            let head = format!("{}: {} filled{before}", count(total, "workbook"), self.filled);
+            let head = format!("{}: {} filled{before}", numbers::count(total, "workbook"), self.filled);
             self.terminal.say("note", &head);
             self.list("not filled", &self.failed);
             self.list("filled, and something in them is wrong", &self.wrong);

@@ -98,6 +98,11 @@ impl<'a> Seen<'a> {
         self.cells.borrow_mut().range(at).ok()
     }
 
+    /// Reads many ranges at once, for [`Seen::grid`] to find; what cannot be read is found missing there.
+    pub fn load(&self, ranges: &[SheetRange]) {
+        let _ = self.cells.borrow_mut().load(ranges);
+    }
+
     /// The target of a compared cell.
     pub fn target(&self, compared: &Compared) -> &Target {
         &self.appraisal.choices[compared.choice].targets[compared.target]
@@ -106,6 +111,13 @@ impl<'a> Seen<'a> {
     /// What a compared cell holds.
     pub fn held(&self, compared: &Compared) -> &Held {
         &self.target(compared).held[compared.index]
+    }
+
+    /// Whether a cell's number was rounded to what its format shows.
+    pub fn is_rounded(&self, compared: &Compared) -> bool {
+        let unit = 2.0 * tolerance::of_cell(self.target(compared), compared.index, 0.0);
+        let Some(value) = self.held(compared).number().filter(|_| unit > 0.0) else { return false };
+        ((value / unit).round() * unit - value).abs() <= 1e-9 * unit.max(value.abs())
     }
 
     /// The net present value of every option under the declared basis, over the baseline where there is one.

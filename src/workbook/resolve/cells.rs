@@ -145,7 +145,7 @@ pub(super) fn shown(text: &str) -> String {
 }
 
 /// The number that a person would read in a text: `1,200`, `£3.5`, `(4)`, `20%`, `7 `.
-pub(super) fn text_as_number(text: &str) -> Option<f64> {
+pub(crate) fn text_as_number(text: &str) -> Option<f64> {
     let text = text.trim().trim_start_matches('\'');
     let bracketed = text.strip_prefix('(').and_then(|rest| rest.strip_suffix(')'));
     let (text, sign) = bracketed.map_or((text, 1.0), |inner| (inner, -1.0));

@@ -32,6 +32,7 @@ use crate::reading::{Grid, ReadCell, Sheets};
 use crate::references::{Area, Cell, Range, SheetRange};
 use crate::roles::Role;
 
+pub(crate) use cells::text_as_number;
 pub(crate) use counted::sum_of;
 pub use report::{Found, NamesReport, names};
 pub use series::{SeriesGrowth, growth_of_series};

@@ -110,7 +110,7 @@ pub fn digest(cells: &[(Cell, String)]) -> String {
 /// The marks of ownership of one sheet: what hence wrote on it, and its digest. To be taken before notes
 /// of a person are put back, so that they stand outside of what hence calls its own. (Print titles come with the
 /// package.)
-pub(super) fn marks(sheet: &Sheet, appraisal: Option<&str>) -> Vec<NewName> {
+pub(crate) fn marks(sheet: &Sheet, appraisal: Option<&str>) -> Vec<NewName> {
     let cells: Vec<(Cell, String)> = sheet
         .cells()
         .filter_map(|(cell, content)| match content {
