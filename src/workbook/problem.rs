@@ -93,7 +93,7 @@ impl fmt::Display for Place {
     }
 }
 
-/// One problem. Codes are short stable kebab words, listed in [`CODES`](crate::codes::CODES).
+/// One problem. Codes are short stable kebab words, listed in [`CODES`].
 #[derive(Clone, Debug, PartialEq, Eq, Hash, Serialize)]
 pub struct Problem {
     /// The stable word.

@@ -2,7 +2,7 @@
 
 use crate::formulas::absolute;
 use crate::model::DefinedName;
-use crate::planfile::{Part, Planned, Says};
+use crate::planfile::{Part, Planned};
 use crate::problem::{Place, Problem};
 use crate::reading::{MAX_CELLS, Value};
 use crate::references::{
@@ -12,6 +12,7 @@ use crate::references::{
 use crate::roles::{self, Role, RoleName, Way};
 
 use super::dynamic::cells_now;
+use super::planned::{belongs_to_all, disagreement, from_plan};
 use super::{Checked, Context};
 
 /// Pieces of one role, at most: formulas have to hold an address of each.
@@ -33,7 +34,7 @@ pub(super) struct Named {
     pub area: Area,
     /// The sheet that the name is scoped to.
     pub scope: Option<String>,
-    /// What it says, where a plan states it without a cell; `at` is then no place.
+    /// What it says, where a plan or the command line states it without a cell; `at` is then no place.
     pub stated: Option<Value>,
     /// The line of the plan that it comes from.
     pub line: Option<u32>,
@@ -80,7 +81,7 @@ impl Named {
     }
 
     /// Stated by a plan in no cell.
-    fn without_cell(planned: &Planned, value: Value) -> Self {
+    pub(super) fn without_cell(planned: &Planned, value: Value) -> Self {
         let (name, from) = (planned.name.clone(), planned.from.clone());
         Named { stated: Some(value), line: Some(planned.line), ..Named::at(name, from, nowhere()) }
     }
@@ -183,66 +184,6 @@ fn beaten(stronger: &[Named], name: &RoleName) -> Option<usize> {
             && same(&named.name.stream, &name.stream)
             && (named.name.option.is_none() || same(&named.name.option, &name.option))
     })
-}
-
-/// Whether a name of the workbook can hold for each of several appraisals: it states something, or years, for all.
-fn belongs_to_all(name: &RoleName, defined: &DefinedName) -> bool {
-    let along = matches!(name.role, Role::Years | Role::Offsets | Role::Prices | Role::Consumption);
-    name.option.is_none() && defined.scope.is_none() && (along || name.role.is_setting())
-}
-
-/// Where plan and workbook state another base, basis, timing or price basis, the plan counts, and a warning says so.
-fn disagreement(context: &mut Context, planned: &Named, name: &str, area: Area) {
-    let weighty = [Role::Base, Role::Basis, Role::Timing, Role::PriceBasis];
-    if !weighty.contains(&planned.name.role) || (planned.stated.is_none() && planned.area == area) {
-        return;
-    }
-    let named = Named::at(planned.name.clone(), name.to_owned(), area);
-    let (held, said) = (held(context, &named), held(context, planned));
-    if held.is_empty() || held.eq_ignore_ascii_case(&said) {
-        return;
-    }
-    let message = format!(
-        "the workbook says `{}`, and {} says `{}`: the plan counts",
-        super::cells::shown(&held),
-        planned.from,
-        super::cells::shown(&said)
-    );
-    context.report(
-        Problem::warning("plan-overrides", named.place(), message)
-            .hint("take the role out of the plan to use what the workbook says"),
-    );
-}
-
-/// What the first cell of a role holds, or a plan states, as text.
-pub(super) fn held(context: &mut Context, named: &Named) -> String {
-    let value = match &named.stated {
-        Some(value) => Some(value.clone()),
-        None => {
-            context.grid(&named.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()))
-        }
-    };
-    match value {
-        Some(Value::Text(text)) => text.trim().to_owned(),
-        Some(Value::Number(number) | Value::Date(number)) => number.to_string(),
-        _ => String::new(),
-    }
-}
-
-fn from_plan(context: &mut Context, planned: &Planned) -> Checked<Named> {
-    let (name, from) = (planned.name.clone(), planned.from.clone());
-    match &planned.says {
-        Says::Value(value) => Ok(Named::without_cell(planned, value.clone())),
-        Says::Cells(text) => {
-            let area = located(context, planned.place(), text).map_err(|problem| {
-                // What is wrong with a name that the plan uses is told at the plan's line.
-                let called = problem.place.name.clone().filter(|name| *name != from);
-                let message = called.map_or_else(String::new, |name| format!("the name {name} "));
-                Problem { message: message + &problem.message, place: planned.place(), ..*problem }
-            })?;
-            Ok(Named { line: Some(planned.line), ..Named::at(name, from, area) })
-        }
-    }
 }
 
 fn from_command_line(context: &mut Context, role: &str, range: &str) -> Checked<Named> {

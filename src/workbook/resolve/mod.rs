@@ -9,6 +9,7 @@ mod coverage;
 mod dynamic;
 mod find;
 mod groups;
+mod planned;
 mod prices;
 mod report;
 mod series;
