@@ -10,7 +10,7 @@ mod mistakes;
 mod rule;
 
 use hence_core::Catalogue;
-use hence_workbook::check::check;
+use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::findings::{Finding, Kind};
 use hence_workbook::references::SheetRange;
 
@@ -25,7 +25,8 @@ fn each() -> u64 {
 
 fn findings(book: &Book) -> Vec<Finding> {
     let (package, _) = book.small().open();
-    let report = check(&package, &[], &Catalogue::builtin()).unwrap_or_else(|error| panic!("{error}"));
+    let report = check(&package, &CheckRequest::default(), &Catalogue::builtin())
+        .unwrap_or_else(|error| panic!("{error}"));
     report.findings
 }
 
