@@ -37,6 +37,7 @@ mod settle;
 mod shapes;
 mod sheets;
 mod shelf;
+mod shelf_sample;
 mod shelf_summary;
 mod small;
 mod stale;
