@@ -62,6 +62,7 @@ impl Form {
     /// D(t) to about 58 bits.
     fn factor(&self, t: f64) -> Dd {
         match self {
+            Form::Gamma(gamma) => gamma.factor(t),
             Form::Mixture(mixture) => mixture.factor(t),
             _ => exp2(self.log2(t)),
         }
