@@ -24,6 +24,7 @@ mod own;
 mod package;
 mod patch;
 mod planfile;
+mod planted;
 mod prices;
 mod readme;
 mod references;

@@ -79,8 +79,13 @@ fn single(look: &Look, c: usize, s: usize) -> Option<Finding> {
     sizes.sort_by(f64::total_cmp);
     let usual = sizes[sizes.len() / 2];
     let size = |i: usize| stream.raw[i].abs();
-    let odd: Vec<usize> =
-        odd.into_iter().filter(|i| (usual / USUAL..=usual * USUAL).contains(&size(*i))).collect();
+    // In the last year a credit may be what is left over.
+    let (low, high) = (sizes[0] / 2.0, sizes[sizes.len() - 1] * 2.0);
+    let ordinary = |i: &usize| {
+        let in_row = (low..=high).contains(&size(*i)) && *i + 1 < stream.raw.len();
+        in_row || (usual / USUAL..=usual * USUAL).contains(&size(*i))
+    };
+    let odd: Vec<usize> = odd.into_iter().filter(ordinary).collect();
     let (first, last) = (*odd.first()?, *odd.last()?);
     let near = |i: usize| {
         let beside = against.iter().min_by_key(|j| j.abs_diff(i)).map_or(0.0, |j| size(*j));

@@ -2,12 +2,12 @@
 
 use std::collections::HashSet;
 
-use super::Seen;
 use super::calc::Slopes;
 use super::cells::Cells;
 use super::effect::Effect;
 use super::expr::At;
 use super::lines::{Line, lines};
+use super::{Compared, Seen};
 use super::{rows, signs, sums, totals, units, years};
 use crate::appraisal::{Choice, Held, Target, TargetRole};
 use crate::findings::Finding;
@@ -19,14 +19,27 @@ use crate::references::Area;
 /// **Errors**: those of reading cells.
 pub fn findings(seen: &Seen) -> Result<Vec<Finding>> {
     let look = Look::new(seen)?;
-    let mut found = years::findings(&look);
-    found.extend(rows::findings(&look));
-    found.extend(totals::findings(&look));
-    found.extend(sums::findings(&look, &found));
-    found.extend(signs::findings(&look));
-    found.extend(units::findings(&look));
-    found.iter_mut().for_each(|finding| call(finding, seen));
+    let mut found = by_formulas(&look);
+    found.extend(of_totals(&look, &found, |_| false));
     Ok(found)
+}
+
+/// Those that formulas, headings and flows show.
+pub(super) fn by_formulas(look: &Look) -> Vec<Finding> {
+    let mut found = years::findings(look);
+    found.extend(rows::findings(look));
+    found.extend(totals::findings(look));
+    found.extend(signs::findings(look));
+    found.extend(units::findings(look));
+    found.iter_mut().for_each(|finding| call(finding, look.seen));
+    found
+}
+
+/// Mistakes that the numbers of totals show, besides those `told`; totals that follow from other numbers are left out.
+pub(super) fn of_totals(look: &Look, told: &[Finding], follows: impl Fn(&Compared) -> bool) -> Vec<Finding> {
+    let mut found = sums::findings(look, told, follows);
+    found.iter_mut().for_each(|finding| call(finding, look.seen));
+    found
 }
 
 /// Adds the name that the cells of a finding go by.
@@ -54,14 +67,15 @@ pub(super) struct Look<'s, 'p> {
 }
 
 impl<'s, 'p> Look<'s, 'p> {
-    fn new(seen: &'s Seen<'p>) -> Result<Self> {
+    /// **Errors**: those of reading cells.
+    pub(super) fn new(seen: &'s Seen<'p>) -> Result<Self> {
         let cells = Cells::read(seen.package, seen.book, &seen.appraisal)?;
         let lines = lines(&seen.appraisal, &cells);
         let npv = |choice: &Choice| {
             let is_npv = |t: &&Target| matches!(t.role, TargetRole::Npv | TargetRole::PvTotal(None));
             let target =
                 choice.targets.iter().find(|t| is_npv(t) && matches!(t.held[0], Held::Formula { .. }));
-            target.map(|target| Slopes::of(cells.each(&target.at.hull())[0], &cells, &HashSet::new()))
+            target.map(|target| Slopes::of(cells.each(&target.at)[0], &cells, &HashSet::new()))
         };
         let npvs = seen.appraisal.choices.iter().map(npv).collect();
         Ok(Look { seen, cells, lines, npvs })
@@ -105,7 +119,7 @@ impl<'s, 'p> Look<'s, 'p> {
             let outcome = &self.seen.outcomes[c];
             let shared = |t: &&Target| t.role == TargetRole::Factor;
             for target in choice.targets.iter().filter(shared) {
-                if let Some(i) = self.cells.each(&target.at.hull()).iter().position(|at| *at == cell) {
+                if let Some(i) = self.cells.each(&target.at).iter().position(|at| *at == cell) {
                     added[c] += by * outcome.net.get(i).copied().unwrap_or(0.0);
                     touched = true;
                 }
@@ -120,7 +134,7 @@ impl<'s, 'p> Look<'s, 'p> {
         choices.flat_map(move |(c, choice)| {
             let streams = choice.streams.iter().enumerate();
             streams.filter_map(move |(s, stream)| {
-                let year = self.cells.each(&stream.at.hull()).iter().position(|at| *at == cell)?;
+                let year = self.cells.each(&stream.at).iter().position(|at| *at == cell)?;
                 Some((c, s, year))
             })
         })

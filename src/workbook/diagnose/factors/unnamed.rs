@@ -62,7 +62,7 @@ fn along(seen: &Seen, c: usize, at: &SheetRange) -> bool {
     })
 }
 
-/// The row as a series, where it looks like factors: it starts near 1, never rises above that, and falls.
+/// The row as a series, where it looks like factors: it starts near 1 and ends lower.
 fn series(seen: &Seen, c: usize, row: &Covered) -> Option<Series> {
     let grid = seen.grid(&row.at.hull())?;
     let outcome = &seen.outcomes[c];
@@ -74,9 +74,8 @@ fn series(seen: &Seen, c: usize, row: &Covered) -> Option<Series> {
     }
     let (first, last) = (points.first()?, points.last()?);
     let near = (0.5..=1.2).contains(&(first.found / first.declared));
-    let falls = points.windows(2).all(|pair| pair[1].found <= pair[0].found) && last.found < first.found;
-    let positive = points.iter().all(|p| p.found > 0.0 && p.found < 1.5);
-    (points.len() > 2 && near && falls && positive).then(|| Series {
+    let falls = last.found < first.found && points.iter().all(|p| p.found > 0.0 && p.found < 1.5);
+    (points.len() > 2 && near && falls).then(|| Series {
         source: Source::Factors,
         ranges: vec![row.at.hull()],
         called: row.heading.clone(),
@@ -101,6 +100,6 @@ fn used(seen: &Seen, c: usize, row: &Series, implied: &[Series]) -> bool {
     if !of_option.is_empty() {
         return of_option.iter().all(by_year);
     }
-    let exactly = |rows: &[Series]| Consequences::of(seen, rows).gives(c, true);
+    let exactly = |rows: &[Series]| Consequences::of(seen, rows).gives(c, true).is_some();
     exactly(std::slice::from_ref(row)) && !exactly(&[])
 }
