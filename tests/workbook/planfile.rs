@@ -152,6 +152,13 @@ fn options_on_sheets_of_one_layout_and_in_blocks() {
 }
 
 #[test]
+fn a_plan_saved_by_another_editor_is_the_same_plan() {
+    let book = Small::default().sheet("Flows", FLOWS).bytes();
+    let other = parsed(&format!("\u{feff}{}", PLAN.replace('\n', "\r\n")));
+    assert_eq!(filled(&book, Some(&other)).report.options, filled(&book, Some(&parsed(PLAN))).report.options);
+}
+
+#[test]
 fn one_plan_serves_a_shelf_of_alike_workbooks() {
     let plan = parsed(PLAN);
     for works in [100, 75, 130] {

@@ -60,7 +60,9 @@ fn the_sample_plan_fills_both_sites() {
     assert_eq!(filled.report.verdict, VERDICT_AGREES);
     let d = |t: i32| 1.03f64.powi(-t.min(30)) * 1.025f64.powi(-(t - 30).max(0));
     let pv = |flow: &dyn Fn(i32) -> f64| (0..40).map(|t| flow(t) * d(t)).sum::<f64>();
-    let sites: [(&[f64], f64, (i32, f64), f64); 2] =
+    // Works, upkeep, the year and cost of the renewal, damage avoided.
+    type Site = (&'static [f64], f64, (i32, f64), f64);
+    let sites: [Site; 2] =
         [(&[1850.0, 2400.0, 600.0], 45.0, (25, 900.0), 310.0), (&[700.0, 1100.0], 20.0, (20, 250.0), 96.0)];
     for ((works, upkeep, renewal, avoided), option) in sites.into_iter().zip(&filled.report.options) {
         let after = |t: i32, flow: f64| if (t as usize) < works.len() { 0.0 } else { flow };

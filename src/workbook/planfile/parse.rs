@@ -85,6 +85,8 @@ impl Kind {
 ///
 /// **Errors**: `plan-text` and `unknown-role`, all of them, each with its line.
 pub(super) fn parse(text: &str) -> Result<Whole> {
+    // Some editors begin a text with a byte-order mark.
+    let text = text.strip_prefix('\u{feff}').unwrap_or(text);
     let mut reader = Reader { text, problems: Vec::new() };
     let (table, errors) = DeTable::parse_recoverable(text);
     if !errors.is_empty() {
@@ -121,6 +123,9 @@ pub(super) fn parse(text: &str) -> Result<Whole> {
     Err(reader.problems.into())
 }
 
+/// The longest name of an option or an appraisal, in characters: it becomes part of a defined name.
+const MAX_NAME: usize = 100;
+
 const TEXT_HINT: &str = "texts stand in quotes: years = \"Flows!C5:Z5\"; `hence plan --help` shows a plan";
 
 struct Reader<'t> {
@@ -155,7 +160,7 @@ impl Reader<'_> {
             let name = word.get_ref().as_ref();
             match name {
                 _ if !is.keys().contains(&name) => self.unknown_key(name, at, is),
-                "name" => section.name = self.text_of(name, value).map(|(text, _)| text),
+                "name" => section.name = self.name(value),
                 "sheet" => section.sheet = self.text_of(name, value),
                 "sheets" => section.sheets = self.texts_of(name, value),
                 "settings" | "roles" => {
@@ -194,6 +199,16 @@ impl Reader<'_> {
         }
         self.check_twins(&section.entries);
         (section, appraisals)
+    }
+
+    /// What an option or an appraisal is called.
+    fn name(&mut self, value: &Spanned<DeValue<'_>>) -> Option<String> {
+        let (text, line) = self.text_of("name", value)?;
+        if key(&text).is_empty() || text.chars().count() > MAX_NAME {
+            let message = format!("`name` has no letter or digit, or more than {MAX_NAME} characters");
+            self.fault("plan-text", line, message, "give it a short name");
+        }
+        Some(text)
     }
 
     fn unknown_key(&mut self, name: &str, line: u32, is: Kind) {
