@@ -77,7 +77,9 @@ fn try_one(file: &Path, prepare: Prepare) -> Result<Option<(Vec<u8>, Counts)>> {
 /// A file with an appraisal in it, on a sheet of its own and on one of its sheets, and the roles; for other tests.
 pub fn prepared(file: &Path) -> Vec<(Package, Vec<(String, String)>)> {
     let Ok(original) = Package::open(file) else { return Vec::new() };
-    let made = [on_a_sheet as Prepare, in_a_sheet].into_iter().filter_map(|prepare| prepare(&original).ok().flatten());
+    let made = [on_a_sheet as Prepare, in_a_sheet]
+        .into_iter()
+        .filter_map(|prepare| prepare(&original).ok().flatten());
     made.map(|prepared| (prepared.package, prepared.roles)).collect()
 }
 

@@ -39,12 +39,16 @@ pub(crate) fn findings(
 ) -> Result<Vec<Finding>> {
     let told = known.len();
     let mut findings = known;
-    findings.extend(structure::findings(seen)?);
+    let look = structure::Look::new(seen)?;
+    findings.extend(structure::by_formulas(&look));
     let reach = reach::of(seen, &findings)?;
     let mut rows = factors::rows(seen);
     let known = |at: &SheetRange| reach.holds(at) || years::behind_a_gap(seen, &findings, at);
     let by_factors = factors::findings(seen, &mut rows, known);
     findings.extend(by_factors);
+    // What a total holds may be told by its numbers alone, where no factors give them.
+    let consequences = consequences::Consequences::of(seen, &rows);
+    findings.extend(structure::of_totals(&look, &findings, |cell| consequences.follows(cell)));
     differs::add(seen, &rows, &mut findings)?;
     let later = findings.split_off(told);
     let follows = |finding: &Finding, earlier: &[Finding]| {

@@ -115,6 +115,13 @@ impl<'a> Seen<'a> {
         &self.target(compared).held[compared.index]
     }
 
+    /// Whether a cell's number was rounded to what its format shows.
+    pub fn is_rounded(&self, compared: &Compared) -> bool {
+        let unit = 2.0 * tolerance::of_cell(self.target(compared), compared.index, 0.0);
+        let Some(value) = self.held(compared).number().filter(|_| unit > 0.0) else { return false };
+        ((value / unit).round() * unit - value).abs() <= 1e-9 * unit.max(value.abs())
+    }
+
     /// The net present value of every option under the declared basis, over the baseline where there is one.
     pub fn npvs(&self) -> Vec<f64> {
         self.outcomes.iter().map(|outcome| outcome.totals().npv).collect()

@@ -24,7 +24,9 @@ struct Reading {
 
 /// Totals whose held numbers are those of a total without its last or first years, without a stream, with one counted
 /// twice or with the other sign, or a thousand or a million times too large or small.
-pub(super) fn findings(look: &Look, told: &[Finding]) -> Vec<Finding> {
+///
+/// Totals that follow from other numbers of the workbook are left out.
+pub(super) fn findings(look: &Look, told: &[Finding], follows: impl Fn(&Compared) -> bool) -> Vec<Finding> {
     let mut found: Vec<Finding> = Vec::new();
     let mut differing: Vec<&Compared> = look
         .seen
@@ -40,7 +42,7 @@ pub(super) fn findings(look: &Look, told: &[Finding]) -> Vec<Finding> {
     for compared in differing {
         let target = look.seen.target(compared);
         let Some(held) = look.seen.held(compared).number() else { continue };
-        if explained(look, compared, told) {
+        if explained(look, compared, told) || follows(compared) {
             continue;
         }
         let Some(finding) = read(look, compared, target, held) else { continue };

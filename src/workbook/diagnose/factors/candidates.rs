@@ -38,7 +38,9 @@ impl Known {
             }
             _ => None,
         };
-        let flat = forward.as_ref().is_some_and(|bands| !bands.several());
+        // Within the first band a declining curve is a flat one.
+        let last = series.points.last().map_or(0.0, |p| p.t);
+        let flat = forward.as_ref().is_some_and(|bands| !bands.several() || bands.edges[0] >= last);
         let (choice, stream) = series.users[0];
         let prices = &seen.appraisal.choices[choice].prices;
         let inflation = match prices.levels.as_ref().map(|given| &given.value) {
@@ -173,9 +175,15 @@ fn near(x: f64) -> impl Iterator<Item = f64> {
     rounded.into_iter().chain([x])
 }
 
+/// A number is fitted only where so many factors can show that it does not fit.
+const ENOUGH: usize = 3;
+
 /// Flat rates that give the factor of an anchor.
 fn fitted_rates(series: &Series, when: When) -> Vec<f64> {
     let mut rates = Vec::new();
+    if series.off().len() < ENOUGH {
+        return rates;
+    }
     for point in anchors(series) {
         let (mut low, mut high) = (-0.2, 1.0);
         let above = |rate: f64| Law::Flat(rate).timed(point.t, when).is_some_and(|f| f > point.found);
@@ -198,7 +206,8 @@ const INFLATION: std::ops::RangeInclusive<f64> = 0.001..=0.25;
 /// other flat rate would do: there the inflation must be a round one, or stated.
 fn inflations(series: &Series, known: &Known, when: When) -> impl Iterator<Item = f64> {
     let mut all = known.inflation.clone();
-    for point in anchors(series) {
+    let enough = series.off().len() >= ENOUGH;
+    for point in anchors(series).filter(|_| enough) {
         let Some(factor) = Law::Declared(Rc::clone(&series.curve)).timed(point.t, when) else { continue };
         let t = point.t + when.later - if when.averaged { 0.5 } else { 0.0 };
         let fitted = (factor / point.found).powf(1.0 / t) - 1.0;

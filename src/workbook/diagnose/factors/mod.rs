@@ -52,7 +52,8 @@ pub fn findings(seen: &Seen, rows: &mut Vec<Series>, known: impl Fn(&SheetRange)
         let found = |cell: &Compared| {
             findings.iter().any(|finding: &Finding| finding.place.holds(&cell.at)) || known(&cell.at)
         };
-        if let Some(total) = total(seen, c, rows, found) {
+        // A reading that is more likely met by chance than not says nothing.
+        if let Some(total) = total(seen, c, rows, found).filter(|total| total.chance < 0.5) {
             findings.push(of_total(seen, &total));
             rows.extend(total.rows);
         }
@@ -64,15 +65,15 @@ pub fn findings(seen: &Seen, rows: &mut Vec<Series>, known: impl Fn(&SheetRange)
 fn of_rows(seen: &Seen, rows: &mut Vec<Series>, known: &impl Fn(&SheetRange) -> bool) -> Vec<Finding> {
     let made = |row: &&Series| {
         let rates = |other: &Series| {
-            other.source == Source::Rates && !rates_off(seen, &other.at).is_empty() && makes(other, row)
+            other.source == Source::Rates && !rates_off(seen, other).is_empty() && makes(other, row)
         };
         row.source == Source::Rates || !rows.iter().any(rates)
     };
     let mut all: Vec<Series> = rows.iter().filter(made).cloned().collect();
     all.extend(implied_rows(seen).into_iter().filter(|row| !follows(row, rows)));
     for row in &mut all {
-        let at = row.at.clone();
-        row.points.retain(|p| !known(&cell_of(&at, p.index)));
+        let ranges = row.ranges.clone();
+        row.points.retain(|p| !known(&cell_of(&ranges[p.range], p.index)));
     }
     let read = |row: &Series| {
         let known = Known::of(seen, row);
@@ -84,36 +85,37 @@ fn of_rows(seen: &Seen, rows: &mut Vec<Series>, known: &impl Fn(&SheetRange) -> 
     };
     let shown: Vec<(Known, Shown)> = all.iter().map(read).collect();
     let (mut findings, mut whole) = (Vec::new(), Vec::new());
-    let mut told = vec![false; all.len()];
-    for i in 0..all.len() {
-        if std::mem::replace(&mut told[i], true) {
-            continue;
-        }
-        let (row, (known, found)) = (&all[i], &shown[i]);
+    for (row, (known, found)) in all.iter().zip(&shown) {
         match found {
+            // Within the digits shown, only a reading that gives every factor exactly says more than the comparison.
+            _ if row.agrees && !exact(found) => {}
             Shown::Declared => {}
             Shown::Mixed(found) => findings.push(of_mixed(seen, row, known, found)),
             Shown::SomeOff(off) => findings.push(some_off(seen, row, off)),
             Shown::Unknown => findings.push(unknown(seen, row)),
             Shown::Reading(found) => {
-                // Present values of several streams of an option that follow one reading have one mistake.
-                let together = |j: &usize| {
-                    same_option(row, &all[*j])
-                        && matches!(&shown[*j].1, Shown::Reading(other) if other.reading == found.reading)
-                };
-                let others: Vec<usize> = (i + 1..all.len()).filter(together).collect();
-                others.iter().for_each(|&j| told[j] = true);
-                let rows: Vec<&Series> =
-                    std::iter::once(row).chain(others.iter().map(|&j| &all[j])).collect();
                 let right = |j: usize| same_option(row, &all[j]) && shown[j].1 == Shown::Declared;
                 let mixed = (0..all.len()).any(right);
-                findings.extend(of_reading(seen, &rows, known, found, mixed));
-                whole.extend(rows.iter().map(|row| completed(seen, row, &found.reading)));
+                findings.extend(of_reading(seen, row, known, found, mixed));
+                whole.push(completed(seen, row, &found.reading));
+                continue;
             }
         }
+        whole.push(row.clone());
     }
     rows.extend(whole);
     findings
+}
+
+/// Whether a row shows a mistake without any doubt.
+fn exact(shown: &Shown) -> bool {
+    match shown {
+        Shown::Reading(found) => {
+            found.fit.off.is_empty() && found.reading.kind != Some(Kind::Differs) && !words::nearly(found)
+        }
+        Shown::Mixed(_) => true,
+        _ => false,
+    }
 }
 
 /// A row with the factors that its blank and waiting cells would have.
@@ -121,7 +123,8 @@ fn completed(seen: &Seen, row: &Series, reading: &Reading) -> Series {
     let outcome = &seen.outcomes[row.users[0].0];
     let mut row = row.clone();
     for (index, t) in outcome.offsets.iter().enumerate() {
-        let point = Point { index, t: *t, declared: outcome.factors[index], found: 0.0, slack: 0.0 };
+        let point =
+            Point { range: 0, index, t: *t, declared: outcome.factors[index], found: 0.0, slack: 0.0 };
         if row.points.iter().all(|p| p.index != index)
             && let Some(found) = reading.factor(&point)
         {
@@ -134,7 +137,7 @@ fn completed(seen: &Seen, row: &Series, reading: &Reading) -> Series {
 /// What a row of yearly rates shows. A rate that is wrong makes every factor after it wrong: where no reading gives the
 /// factors, the rates themselves say how many are off.
 fn of_rates(seen: &Seen, row: &Series, known: &Known) -> Shown {
-    let off = rates_off(seen, &row.at);
+    let off = rates_off(seen, row);
     if off.is_empty() {
         return Shown::Declared;
     }
@@ -180,34 +183,30 @@ fn follows(implied: &Series, rows: &[Series]) -> bool {
 
 /// One finding a departure, its effect being what it adds to that of the ones before it. Where other streams of the
 /// option are timed as declared, timings are mixed.
-fn of_reading(seen: &Seen, rows: &[&Series], known: &Known, found: &Found, mixed: bool) -> Vec<Finding> {
+fn of_reading(seen: &Seen, row: &Series, known: &Known, found: &Found, mixed: bool) -> Vec<Finding> {
     let Found { reading, fit, .. } = found;
-    let row = rows[0];
     let law = Reading { when: known.declared, rounding: None, ..reading.clone() };
     let timed = Reading { rounding: None, ..reading.clone() };
-    let every = |points: &dyn Fn(&Series) -> Vec<Point>| rows.iter().map(|row| points(row)).collect();
-    let mut stages: Vec<(Kind, Vec<Vec<Point>>)> = Vec::new();
+    let mut stages: Vec<(Kind, Vec<Point>)> = Vec::new();
     if let Some(kind) = reading.kind {
-        stages.push((kind, every(&|row| with(row, |p| law.factor(p)))));
+        stages.push((kind, with(row, |p| law.factor(p))));
     }
     if reading.when != known.declared {
         let kind = if mixed { Kind::MixedTiming } else { Kind::OffByPeriod };
-        stages.push((kind, every(&|row| with(row, |p| timed.factor(p)))));
+        stages.push((kind, with(row, |p| timed.factor(p))));
     }
     if reading.rounding.is_some() {
-        stages.push((Kind::RoundedFactors, every(&|row| row.points.clone())));
+        stages.push((Kind::RoundedFactors, row.points.clone()));
     }
     let confidence = confidence(row, &fit.off, found.ties.len());
     let confidence = if words::nearly(found) { 0.9 * confidence } else { confidence };
     let mut before = seen.npvs();
     let mut findings = Vec::new();
     for (kind, points) in stages {
-        let with: Vec<(&[User], &[Point])> =
-            rows.iter().zip(&points).map(|(row, points)| (&row.users[..], &points[..])).collect();
-        let after = npvs_with(seen, &with);
+        let after = npvs_with(seen, &[(&row.users, &points)]);
         let effect = Effect::of(&seen.appraisal, &before, &after);
-        let said = words::of_reading(seen, rows, known, found, kind, effect.npv);
-        findings.push(finding(kind, place(rows), said, effect, confidence));
+        let said = words::of_reading(seen, row, known, found, kind, effect.npv);
+        findings.push(finding(kind, place(row), said, effect, confidence));
         before = after;
     }
     if !fit.off.is_empty() {
@@ -218,24 +217,26 @@ fn of_reading(seen: &Seen, rows: &[&Series], known: &Known, found: &Found, mixed
 
 fn of_mixed(seen: &Seen, row: &Series, known: &Known, found: &Mixed) -> Finding {
     // Where neither timing is the declared one, the whole row is off.
-    let cells: Vec<SheetRange> = match (found.most == known.declared, found.rest == known.declared) {
-        (true, _) => found.others.iter().map(|&i| row.cell(row.points[i].index)).collect(),
-        (_, true) => {
-            let most = (0..row.points.len()).filter(|i| !found.others.contains(i));
-            most.map(|i| row.cell(row.points[i].index)).collect()
-        }
-        _ => vec![row.at.clone()],
+    let wrong = |i: &usize| match (found.most == known.declared, found.rest == known.declared) {
+        (true, _) => found.others.contains(i),
+        (_, true) => !found.others.contains(i),
+        _ => true,
     };
+    let wrong: Vec<usize> = (0..row.points.len()).filter(wrong).map(|i| row.points[i].index).collect();
+    let first = &row.ranges[0];
+    let beside = row.ranges.iter().filter(|range| range.sheet == first.sheet);
+    let cells: Vec<SheetRange> =
+        beside.flat_map(|range| wrong.iter().map(|&index| cell_of(range, index))).collect();
     let effect = effect(seen, row);
     let said = words::of_mixed(seen, row, found);
-    let place = span(&cells).unwrap_or_else(|| place(&[row])).called(&row.called);
+    let place = span(&cells).unwrap_or_else(|| place(row)).called(&row.called);
     finding(Kind::MixedTiming, place, said, effect, confidence(row, &[], 0))
 }
 
 /// A few factors that are not as declared, in a row that otherwise is (or follows one reading).
 fn some_off(seen: &Seen, row: &Series, off: &[usize]) -> Finding {
-    let cells: Vec<SheetRange> = off.iter().map(|&i| row.cell(row.points[i].index)).collect();
-    let place = span(&cells).unwrap_or_else(|| place(&[row])).called(&row.called);
+    let cells: Vec<SheetRange> = off.iter().map(|&i| row.cell(&row.points[i])).collect();
+    let place = span(&cells).unwrap_or_else(|| place(row)).called(&row.called);
     // A wrong rate moves every factor after it.
     let points: Vec<Point> = match row.source {
         Source::Rates => row.points.clone(),
@@ -248,12 +249,12 @@ fn some_off(seen: &Seen, row: &Series, off: &[usize]) -> Finding {
 
 /// A row that nothing gives. Present values over flows are factors only if they look like such.
 fn unknown(seen: &Seen, row: &Series) -> Finding {
+    let near = row.points.iter().all(|p| p.found > 0.0 && p.found < 1.6);
     let falls = row.points.windows(2).filter(|pair| pair[1].found <= pair[0].found).count();
-    let near_one = row.points.first().is_some_and(|p| (0.5..=1.5).contains(&p.found));
-    let like = near_one && 10 * falls >= 8 * row.points.len().saturating_sub(1);
+    let like = near && (row.ranges.len() > 1 || 2 * falls > row.points.len());
     let kind = if row.source != Source::Present || like { Kind::NoKnownRate } else { Kind::Differs };
     // The more factors, the less likely that a reading was missed by chance.
-    finding(kind, place(&[row]), words::unknown(seen, row), effect(seen, row), confidence(row, &[], 0))
+    finding(kind, place(row), words::unknown(seen, row), effect(seen, row), confidence(row, &[], 0))
 }
 
 fn effect(seen: &Seen, row: &Series) -> Effect {
@@ -267,16 +268,17 @@ fn with(row: &Series, factor: impl Fn(&Point) -> Option<f64>) -> Vec<Point> {
     row.points.iter().map(with).collect()
 }
 
-/// The cells of rows: those of all, where they stand side by side, else those of the first.
-fn place(rows: &[&Series]) -> Place {
-    let mut range = rows[0].at.range;
-    for row in &rows[1..] {
-        let hull = range.hull(&row.at.range);
-        if row.at.sheet == rows[0].at.sheet && hull.len() == range.len() + row.at.range.len() {
+/// The cells of a row: all of them, where its ranges stand side by side, else those of the first.
+fn place(row: &Series) -> Place {
+    let first = &row.ranges[0];
+    let mut range = first.range;
+    for other in row.ranges.iter().skip(1).filter(|other| other.sheet == first.sheet) {
+        let hull = range.hull(&other.range);
+        if hull.len() == range.len() + other.range.len() {
             range = hull;
         }
     }
-    Place::cells(&rows[0].at.sheet, range).called(&rows[0].called)
+    Place::cells(&first.sheet, range).called(&row.called)
 }
 
 fn confidence(row: &Series, off: &[usize], ties: usize) -> f64 {

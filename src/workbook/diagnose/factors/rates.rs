@@ -6,7 +6,6 @@ use super::law::{Bands, Law, When};
 use super::series::{Point, Series, Source};
 use crate::appraisal::{Held, TargetRole};
 use crate::diagnose::{Seen, Standing};
-use crate::references::SheetRange;
 
 /// Every whole row of yearly rates. The rate of a year holds over the year that ends at its offset.
 pub fn rates_rows(seen: &Seen) -> Vec<Series> {
@@ -17,7 +16,7 @@ pub fn rates_rows(seen: &Seen) -> Vec<Series> {
             let held: Option<Vec<f64>> = target.held.iter().map(Held::number).collect();
             let Some(rates) = held.filter(|_| outcome.forward.iter().all(Option::is_some)) else { continue };
             if let Some(row) =
-                rows.iter_mut().find(|row| row.at == target.at && row.curve.as_ref() == &outcome.curve)
+                rows.iter_mut().find(|row| row.ranges[0] == target.at && row.curve.as_ref() == &outcome.curve)
             {
                 row.users.push((c, None));
                 continue;
@@ -27,16 +26,17 @@ pub fn rates_rows(seen: &Seen) -> Vec<Series> {
             let when = When::declared(outcome.timing);
             let point = |(index, (t, declared)): (usize, (&f64, &f64))| {
                 let found = law.timed(*t, when).unwrap_or(*declared);
-                Point { index, t: *t, declared: *declared, found, slack: 0.0 }
+                Point { range: 0, index, t: *t, declared: *declared, found, slack: 0.0 }
             };
             rows.push(Series {
                 source: Source::Rates,
-                at: target.at.clone(),
+                ranges: vec![target.at.clone()],
                 called: target.from.clone(),
                 users: vec![(c, None)],
                 curve: Rc::new(outcome.curve.clone()),
                 timing: outcome.timing,
                 points: outcome.offsets.iter().zip(&outcome.factors).enumerate().map(point).collect(),
+                agrees: false,
             });
         }
     }
@@ -44,7 +44,8 @@ pub fn rates_rows(seen: &Seen) -> Vec<Series> {
 }
 
 /// Places of the rates that are not as declared.
-pub fn rates_off(seen: &Seen, at: &SheetRange) -> Vec<usize> {
+pub fn rates_off(seen: &Seen, row: &Series) -> Vec<usize> {
+    let at = &row.ranges[0];
     let off = seen.compared.iter().filter(|cell| {
         cell.standing == Standing::Differs
             && at.sheet == cell.at.sheet

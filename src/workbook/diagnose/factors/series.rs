@@ -5,7 +5,7 @@ use std::rc::Rc;
 use hence_core::{Curve, Timing};
 
 use crate::appraisal::{Held, StreamKind, Target, TargetRole};
-use crate::diagnose::Seen;
+use crate::diagnose::{Compared, Seen, Standing};
 use crate::formulas::find;
 use crate::references::SheetRange;
 use crate::tolerance;
@@ -27,6 +27,8 @@ pub enum Source {
 /// One factor that a workbook uses.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Point {
+    /// Which range of the series it stands in.
+    pub range: usize,
     /// Its place among the years.
     pub index: usize,
     /// Years after the base, as declared.
@@ -35,7 +37,7 @@ pub struct Point {
     pub declared: f64,
     /// What the workbook uses.
     pub found: f64,
-    /// How far the two may be apart beyond the tolerance of factors, as present values are shown to so many digits.
+    /// How far the two may be apart beyond the tolerance of factors, as present values were entered to so many digits.
     pub slack: f64,
 }
 
@@ -47,9 +49,9 @@ pub type User = (usize, Option<usize>);
 pub struct Series {
     /// How it was read.
     pub source: Source,
-    /// Its cells.
-    pub at: SheetRange,
-    /// The name they go by.
+    /// Its cells: one range, or several streams' present values that imply the same factors.
+    pub ranges: Vec<SheetRange>,
+    /// The name that the first of them goes by.
     pub called: String,
     /// What is discounted by it.
     pub users: Vec<User>,
@@ -57,19 +59,38 @@ pub struct Series {
     pub curve: Rc<Curve>,
     /// The declared timing.
     pub timing: Timing,
-    /// Factors in the order of the years; none where a cell is blank or awaits recalculation.
+    /// Factors in the order of the years, at most one a year; none where a cell is blank or awaits recalculation.
     pub points: Vec<Point>,
+    /// All cells agree with the declared basis as they are shown.
+    pub agrees: bool,
 }
 
 impl Series {
+    /// Adds the points of a row that implies the same factors: those of other years, and those that say more.
+    fn join(&mut self, row: Series) {
+        let range = self.ranges.len();
+        for point in row.points {
+            let point = Point { range, ..point };
+            match self.points.iter_mut().find(|own| own.index == point.index) {
+                Some(own) if own.slack > point.slack => *own = point,
+                Some(_) => {}
+                None => self.points.push(point),
+            }
+        }
+        self.points.sort_by_key(|point| point.index);
+        self.ranges.extend(row.ranges);
+        self.users.extend(row.users);
+        self.agrees &= row.agrees;
+    }
+
     /// Whether it is what yearly rates would make.
     pub fn is_made_of_rates(&self) -> bool {
         self.source == Source::Rates
     }
 
     /// The cell of a point.
-    pub fn cell(&self, index: usize) -> SheetRange {
-        cell_of(&self.at, index)
+    pub fn cell(&self, point: &Point) -> SheetRange {
+        cell_of(&self.ranges[point.range], point.index)
     }
 
     /// How far a factor may be from what a law gives.
@@ -97,7 +118,7 @@ pub fn factor_rows(seen: &Seen) -> Vec<Series> {
             let row =
                 series(seen, Source::Factors, (c, stream), target, |_, held| Some((held.number()?, 0.0)));
             // Options that share a range and a basis show one mistake.
-            let same = |other: &&mut Series| other.at == row.at && other.curve == row.curve;
+            let same = |other: &&mut Series| other.ranges == row.ranges && other.curve == row.curve;
             match rows.iter_mut().find(same) {
                 Some(known) => known.users.extend(row.users),
                 None => rows.push(row),
@@ -107,41 +128,65 @@ pub fn factor_rows(seen: &Seen) -> Vec<Series> {
     rows
 }
 
-/// The factors that present values by year imply; years without a flow say nothing.
+/// The factors that present values by year imply; years without a flow say nothing. Streams of an option that imply the
+/// same factors are one series.
 pub fn implied_rows(seen: &Seen) -> Vec<Series> {
-    let mut rows = Vec::new();
+    let mut rows: Vec<Series> = Vec::new();
     for (c, choice) in seen.appraisal.choices.iter().enumerate() {
-        let outcome = &seen.outcomes[c];
-        for target in &choice.targets {
-            let (stream, flows) = match &target.role {
-                TargetRole::PvByYear(Some(name)) => match find(choice, name) {
-                    Some(s) => (Some(s), &outcome.streams[s].flows),
-                    None => continue,
-                },
-                // Where a stream has a basis of its own, the net has no single factor.
-                TargetRole::PvByYear(None) if outcome.streams.iter().all(|s| s.own.is_none()) => {
-                    (None, &outcome.net)
-                }
-                _ => continue,
-            };
-            let implied = |i: usize, held: &Held| {
-                let (value, flow) = (held.number()?, flows[i]);
-                let slack = shown(target, i) / flow.abs();
-                // A flow that is nothing, or lost in the digits shown, tells nothing of its factor.
-                (flow != 0.0 && slack < 0.02 * outcome.factors[i].abs()).then(|| (value / flow, slack))
-            };
-            let row = series(seen, Source::Present, (c, stream), target, implied);
-            if !row.points.is_empty() {
-                rows.push(row);
+        let mut own: Vec<Series> =
+            choice.targets.iter().filter_map(|target| implied(seen, c, target)).collect();
+        // Streams with the most flows say most; the others follow one of them.
+        own.sort_by_key(|row| std::cmp::Reverse(row.points.len()));
+        let mut together: Vec<Series> = Vec::new();
+        for row in own {
+            match together.iter_mut().find(|other| other.curve == row.curve && alike(other, &row)) {
+                Some(other) => other.join(row),
+                None => together.push(row),
             }
         }
+        rows.extend(together);
     }
     rows
 }
 
-/// Half of the last unit that a cell shows; nothing where it shows all digits.
-fn shown(target: &Target, index: usize) -> f64 {
-    tolerance::of_cell(target, index, 0.0)
+/// The factors that the present values of one target imply.
+fn implied(seen: &Seen, c: usize, target: &Target) -> Option<Series> {
+    let (choice, outcome) = (&seen.appraisal.choices[c], &seen.outcomes[c]);
+    let (stream, flows) = match &target.role {
+        TargetRole::PvByYear(Some(name)) => {
+            let s = find(choice, name)?;
+            (Some(s), &outcome.streams[s].flows)
+        }
+        // Where a stream has a basis of its own, the net has no single factor.
+        TargetRole::PvByYear(None) if outcome.streams.iter().all(|s| s.own.is_none()) => (None, &outcome.net),
+        _ => return None,
+    };
+    let entered = entered(seen, c, target);
+    let implied = |i: usize, held: &Held| {
+        let (value, flow) = (held.number()?, flows[i]);
+        let slack = entered[i] / flow.abs();
+        // A flow that is nothing, or lost in the digits, tells nothing of its factor.
+        (flow != 0.0 && slack < 0.02 * outcome.factors[i].abs()).then(|| (value / flow, slack))
+    };
+    let row = series(seen, Source::Present, (c, stream), target, implied);
+    (!row.points.is_empty()).then_some(row)
+}
+
+/// Half of the last unit that each cell shows, where the numbers of the row were rounded to it; else nothing.
+fn entered(seen: &Seen, c: usize, target: &Target) -> Vec<f64> {
+    let cells: Vec<&Compared> =
+        seen.compared.iter().filter(|cell| cell.choice == c && seen.target(cell).at == target.at).collect();
+    let rounded = cells.iter().all(|cell| seen.held(cell).number().is_none() || seen.is_rounded(cell));
+    let half = |i: usize| if rounded { tolerance::of_cell(target, i, 0.0) } else { 0.0 };
+    (0..target.held.len()).map(half).collect()
+}
+
+/// Whether two rows imply the same factors in the years that both have.
+fn alike(a: &Series, b: &Series) -> bool {
+    a.points.iter().all(|p| {
+        let other = b.points.iter().find(|q| q.index == p.index);
+        other.is_none_or(|q| (p.found - q.found).abs() <= Series::tolerance(p, p.found) + q.slack)
+    })
 }
 
 fn series(
@@ -156,16 +201,19 @@ fn series(
     let factors = stream.map_or(&outcome.factors[..], |s| outcome.factors_of(s));
     let points = target.held.iter().enumerate().filter_map(|(index, held)| {
         let (found, slack) = read(index, held)?;
-        Some(Point { index, t: outcome.offsets[index], declared: factors[index], found, slack })
+        Some(Point { range: 0, index, t: outcome.offsets[index], declared: factors[index], found, slack })
     });
     Series {
         source,
-        at: target.at.clone(),
+        ranges: vec![target.at.clone()],
         called: target.from.clone(),
         users: vec![(choice, stream)],
         curve: Rc::new(own.map_or(&outcome.curve, |own| &own.curve).clone()),
         timing: outcome.timing,
         points: points.collect(),
+        agrees: !seen.compared.iter().any(|cell| {
+            cell.standing == Standing::Differs && cell.choice == choice && seen.target(cell).at == target.at
+        }),
     }
 }
 

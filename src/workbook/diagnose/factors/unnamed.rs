@@ -4,8 +4,8 @@ use std::rc::Rc;
 
 use super::series::{Point, Series, Source, implied_rows};
 use crate::appraisal::{Covered, TargetRole};
+use crate::diagnose::Seen;
 use crate::diagnose::consequences::Consequences;
-use crate::diagnose::{Compared, Seen, Standing};
 use crate::reading::Value;
 use crate::references::SheetRange;
 use crate::suggest::reads_as_factors;
@@ -25,10 +25,6 @@ pub fn unnamed_rows(seen: &Seen) -> Vec<Series> {
             continue;
         }
         let shown = choice.targets.iter().flat_map(|target| &target.held).any(|held| held.number().is_some());
-        let differs = |cell: &Compared| cell.choice == c && cell.standing == Standing::Differs;
-        if shown && !seen.compared.iter().any(differs) {
-            continue;
-        }
         let candidates = seen.appraisal.coverage.iter().filter(|row| {
             let n = row.at.range.len() as f64;
             row.roles.is_empty() && row.total > 0.0 && row.total < 1.5 * n && along(seen, c, &row.at)
@@ -45,7 +41,7 @@ pub fn unnamed_rows(seen: &Seen) -> Vec<Series> {
             headed.first().copied().filter(|_| headed.len() == 1)
         };
         let Some((_, row)) = found else { continue };
-        match rows.iter_mut().find(|known| known.at == row.at && known.curve == row.curve) {
+        match rows.iter_mut().find(|known| known.ranges == row.ranges && known.curve == row.curve) {
             Some(known) => known.users.extend(row.users.clone()),
             None => rows.push(row.clone()),
         }
@@ -66,7 +62,7 @@ fn along(seen: &Seen, c: usize, at: &SheetRange) -> bool {
     })
 }
 
-/// The row as a series, where it looks like factors: it starts near 1, never rises above that, and falls.
+/// The row as a series, where it looks like factors: it starts near 1 and ends lower.
 fn series(seen: &Seen, c: usize, row: &Covered) -> Option<Series> {
     let grid = seen.grid(&row.at)?;
     let outcome = &seen.outcomes[c];
@@ -74,24 +70,25 @@ fn series(seen: &Seen, c: usize, row: &Covered) -> Option<Series> {
     for (index, (_, cell)) in grid.iter().enumerate() {
         let Value::Number(found) = cell.value else { continue };
         let (t, declared) = (*outcome.offsets.get(index)?, outcome.factors[index]);
-        points.push(Point { index, t, declared, found, slack: 0.0 });
+        points.push(Point { range: 0, index, t, declared, found, slack: 0.0 });
     }
     let (first, last) = (points.first()?, points.last()?);
     let near = (0.5..=1.2).contains(&(first.found / first.declared));
-    let falls = points.windows(2).all(|pair| pair[1].found <= pair[0].found) && last.found < first.found;
-    let positive = points.iter().all(|p| p.found > 0.0 && p.found < 1.5);
-    (points.len() > 2 && near && falls && positive).then(|| Series {
+    let falls = last.found < first.found && points.iter().all(|p| p.found > 0.0 && p.found < 1.5);
+    (points.len() > 2 && near && falls).then(|| Series {
         source: Source::Factors,
-        at: row.at.clone(),
+        ranges: vec![row.at.clone()],
         called: row.heading.clone(),
         users: vec![(c, None)],
         curve: Rc::new(outcome.curve.clone()),
         timing: outcome.timing,
         points,
+        agrees: false,
     })
 }
 
-/// Whether the results of the option follow from the row: its present values by year, or its totals.
+/// Whether the results of the option follow from the row: its present values by year, or its totals. Where they follow
+/// from the declared factors as well, the row tells nothing.
 fn used(seen: &Seen, c: usize, row: &Series, implied: &[Series]) -> bool {
     let of_option: Vec<&Series> = implied.iter().filter(|other| other.users[0].0 == c).collect();
     let at = |index: usize| row.points.iter().find(|p| p.index == index).map(|p| p.found);
@@ -103,5 +100,6 @@ fn used(seen: &Seen, c: usize, row: &Series, implied: &[Series]) -> bool {
     if !of_option.is_empty() {
         return of_option.iter().all(by_year);
     }
-    Consequences::of(seen, std::slice::from_ref(row)).gives(c)
+    let exactly = |rows: &[Series]| Consequences::of(seen, rows).gives(c, true).is_some();
+    exactly(std::slice::from_ref(row)) && !exactly(&[])
 }

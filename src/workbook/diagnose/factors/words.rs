@@ -8,7 +8,7 @@ use super::mixed::Mixed;
 use super::reading::Rounding;
 use super::search::Found;
 use super::series::{Point, Series, Source};
-use super::totals::Total;
+use super::totals::{Second, Total};
 use crate::appraisal::Held;
 use crate::clock::label_words;
 use crate::diagnose::Seen;
@@ -34,13 +34,13 @@ pub fn nearly(found: &Found) -> bool {
 /// One departure of a reading.
 pub fn of_reading(
     seen: &Seen,
-    rows: &[&Series],
+    row: &Series,
     known: &Known,
     found: &Found,
     kind: Kind,
     effect: Option<f64>,
 ) -> Said {
-    let (row, reading) = (rows[0], &found.reading);
+    let reading = &found.reading;
     let what = match kind {
         Kind::OffByPeriod | Kind::MixedTiming => timing(known.declared, reading.when),
         Kind::RoundedFactors => reading.rounding.map(rounding).unwrap_or_default(),
@@ -80,8 +80,8 @@ pub fn of_reading(
     if let Some(formula) = formula(seen, row) {
         words.push_str(&format!("; the first of them is `{formula}`"));
     }
-    if rows.len() > 1 {
-        let others = rows[1..].iter().map(|row| row.at.to_string()).collect::<Vec<_>>();
+    if row.ranges.len() > 1 {
+        let others = row.ranges[1..].iter().map(ToString::to_string).collect::<Vec<_>>();
         words.push_str(&format!("; {} likewise", others.join(", ")));
     }
     if kind == Kind::MixedTiming {
@@ -130,12 +130,17 @@ pub fn of_mixed(seen: &Seen, row: &Series, found: &Mixed) -> Said {
 /// A reading that gives the totals.
 pub fn of_total(seen: &Seen, total: &Total, known: &Known, effect: Option<f64>) -> Said {
     let (row, reading) = (&total.rows[0], &total.reading);
-    let what = match (total.kinds[0], total.benefits) {
-        (_, Some(benefits)) => format!(
-            "costs by {}, all else by {}",
-            timing(known.declared, reading.when),
-            timing(known.declared, benefits)
-        ),
+    let timed = |when: When| {
+        if when == known.declared { "the declared timing".to_owned() } else { timing(known.declared, when) }
+    };
+    let what = match (total.kinds[0], total.second) {
+        (_, Some(Second::Others(when))) => {
+            format!("costs by {}, all else by {}", timed(reading.when), timed(when))
+        }
+        (_, Some(Second::From(index, when))) => {
+            let year = year(seen, row, &row.points[index]);
+            format!("{} until, and from {year} on {}", timed(reading.when), timed(when))
+        }
         (Kind::OffByPeriod, None) => timing(known.declared, reading.when),
         (Kind::RoundedFactors, None) => {
             format!("the declared factors {}", reading.rounding.map(rounding).unwrap_or_default())
@@ -178,7 +183,7 @@ pub fn some_off(seen: &Seen, row: &Series, off: &[usize]) -> Said {
 
 /// A few yearly rates that are off.
 fn rates_off(seen: &Seen, row: &Series, off: &[usize]) -> Said {
-    let first = row.cell(off[0]);
+    let first = row.cell(&row.points[off[0]]);
     let cell = seen.compared.iter().find(|cell| cell.at == first);
     let found = cell.and_then(|cell| seen.held(cell).number());
     let expected = cell.and_then(|cell| match cell.expected {
@@ -359,7 +364,7 @@ fn year(seen: &Seen, row: &Series, point: &Point) -> String {
 
 /// The formula of the first point that is off.
 fn formula(seen: &Seen, row: &Series) -> Option<String> {
-    let first = row.off().first().map(|p| row.cell(p.index))?;
+    let first = row.off().first().map(|p| row.cell(p))?;
     let grid = seen.grid(&first)?;
     let formula = grid.get(first.range.first)?.formula.clone()?;
     Some(format!("={formula}"))
