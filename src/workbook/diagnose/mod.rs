@@ -14,6 +14,7 @@ mod factors;
 mod lines;
 mod mend;
 mod reach;
+mod roots;
 mod rows;
 mod seen;
 mod signs;
