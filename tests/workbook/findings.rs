@@ -330,8 +330,7 @@ fn a_net_present_value_alone_says_what_it_was_made_with() {
     }
     // Costs as declared, benefits half a year later.
     let plan = npv(UK, 100, &uk);
-    let mixed: f64 =
-        (1..=100).map(|i| f64::from(i)).map(|i| (40.0 + 0.25 * i) * uk(i + 0.5) - 20.0 * uk(i)).sum();
+    let mixed: f64 = (1..=100).map(f64::from).map(|i| (40.0 + 0.25 * i) * uk(i + 0.5) - 20.0 * uk(i)).sum();
     plan.with(&format!("B4: {}", mixed - 1000.0), "").only(Kind::MixedTiming);
     // A number that nothing gives.
     let finding = npv(UK, 100, &uk).with("B4: 123.456", "").only(Kind::Differs);

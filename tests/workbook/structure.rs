@@ -179,6 +179,25 @@ fn typed_totals_are_told_by_their_numbers() {
 }
 
 #[test]
+fn typed_values_by_year_are_told_by_their_numbers() {
+    let net = |i: usize| water(i) + fish(i) - works(i) - running(i);
+    type Slip = (&'static str, fn(usize) -> f64);
+    let slips: [Slip; 3] =
+        [("double-count", water), ("short-total", |i| -fish(i)), ("negative-cost", |i| 2.0 * running(i))];
+    for (code, added) in slips {
+        let mut plan = Plan::clean();
+        plan.name("hence_pv", Some(&row(17)));
+        for i in 0..YEARS {
+            plan.put(at(17, i), ((net(i) + added(i)) * factor(i)).to_string());
+        }
+        let all: f64 = (0..YEARS).map(|i| added(i) * factor(i)).sum();
+        plan.set("B20", &(pv_benefits() - pv_costs() + all).to_string());
+        let finding = checked(&plan, code, &format!("Plan!{} [hence_pv]", row(17)));
+        close(finding.effect_on_npv, all);
+    }
+}
+
+#[test]
 fn a_cost_with_a_slip_of_its_sign() {
     let mut plan = Plan::clean();
     plan.put(at(6, 1), "-3100".into());
@@ -296,7 +315,7 @@ fn years_that_are_broken() {
     }
     let found = plan.findings();
     assert!(
-        found.iter().any(|f| f.kind.code() == "years-broken" && f.place.to_string() == "Plan!N4"),
+        found.iter().any(|f| f.kind.code() == "years-broken" && f.place.to_string() == "Plan!N4:U4"),
         "{found:#?}"
     );
 }

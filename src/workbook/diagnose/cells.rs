@@ -22,8 +22,6 @@ pub(crate) struct Content {
     pub expr: Option<Expr>,
     /// Its formula as it would read in A1: alike in every cell that it was copied to.
     pub shape: Option<String>,
-    /// Its number format.
-    pub format: Option<String>,
 }
 
 impl Content {
@@ -81,7 +79,7 @@ impl Cells {
                 }
                 let back = |text: &String| shift(text, -i64::from(at.row), -i64::from(at.col));
                 let shape = cell.formula.as_ref().map(back);
-                let content = Content { value: cell.value.clone(), expr, shape, format: cell.format.clone() };
+                let content = Content { value: cell.value.clone(), expr, shape };
                 found.insert(*at, content);
             }
             cells.read.insert(sheet, found);

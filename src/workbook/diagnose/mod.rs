@@ -3,6 +3,7 @@
 //! One mistake gives one finding. What follows from it, by formula or because the workbook's own numbers give it, is
 //! folded into it; a cell that differs for no reason that is known is a finding `differs`.
 
+mod by_year;
 mod calc;
 mod cells;
 mod consequences;
@@ -13,6 +14,7 @@ mod factors;
 mod lines;
 mod mend;
 mod reach;
+mod roots;
 mod rows;
 mod seen;
 mod signs;
@@ -48,22 +50,27 @@ pub(crate) fn findings(
     findings.extend(structure::by_formulas(&look));
     let reach = reach::of(seen, &findings)?;
     let mut rows = factors::rows(seen);
-    let known = |at: &SheetRange| reach.holds(at) || years::behind_a_gap(seen, &findings, at);
+    let known = |at: &SheetRange| reach.holds(at) || years::under_broken(seen, &findings, at);
     let by_factors = factors::findings(seen, &mut rows, known);
     findings.extend(by_factors);
     // What a total holds may be told by its numbers alone, where no factors give them.
     let consequences = consequences::Consequences::of(seen, &rows);
-    let by_totals = structure::of_totals(&look, &findings, |cell| consequences.follows(cell));
-    findings.extend(by_totals);
+    findings.extend(structure::of_totals(&look, &findings, |cell| consequences.follows(cell)));
     differs::add(seen, &rows, &mut findings)?;
+    // What only follows has explained its cells by now, and is not told again.
     let later = findings.split_off(told);
-    let follows = |finding: &Finding, earlier: &[Finding]| {
+    for finding in &later {
         let cells = finding.place.sheet.as_ref().zip(finding.place.range);
         let at = cells.map(|(sheet, range)| SheetRange::new(sheet, range));
-        finding.kind == Kind::Differs && at.is_some_and(|at| years::behind_a_gap(seen, earlier, &at))
-    };
-    let kept: Vec<bool> =
-        later.iter().map(|finding| !repeats(finding) && !follows(finding, &later)).collect();
-    findings.extend(later.into_iter().zip(kept).filter(|(_, keep)| *keep).map(|(finding, _)| finding));
+        let under = at.is_some_and(|at| {
+            years::under_broken(seen, &later, &at) || years::under_broken(seen, &findings[..told], &at)
+        });
+        let follows = finding.kind == Kind::Differs && under;
+        let again = finding.place.range.is_some_and(|range| range.is_single())
+            && findings.iter().any(|earlier| sums::same(earlier, finding));
+        if !follows && !again && !repeats(finding) {
+            findings.push(finding.clone());
+        }
+    }
     Ok(findings)
 }

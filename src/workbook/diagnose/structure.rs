@@ -8,7 +8,7 @@ use super::effect::Effect;
 use super::expr::At;
 use super::lines::{Line, lines};
 use super::{Compared, Seen};
-use super::{rows, signs, sums, totals, units, years};
+use super::{by_year, rows, signs, sums, totals, units, years};
 use crate::appraisal::{Choice, Held, Target, TargetRole};
 use crate::findings::Finding;
 use crate::problem::Result;
@@ -31,6 +31,7 @@ pub(super) fn by_formulas(look: &Look) -> Vec<Finding> {
     found.extend(totals::findings(look));
     found.extend(signs::findings(look));
     found.extend(units::findings(look));
+    found.extend(by_year::findings(look));
     found.iter_mut().for_each(|finding| call(finding, look.seen));
     found
 }

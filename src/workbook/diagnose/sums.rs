@@ -47,18 +47,21 @@ pub(super) fn findings(look: &Look, told: &[Finding], follows: impl Fn(&Compared
         }
         let Some(finding) = read(look, compared, target, held) else { continue };
         // The NPV follows the total of costs that it was taken from: one mistake, told where it begins.
-        let follows = found.iter().any(|other: &Finding| {
-            let alike = match (other.effect_on_npv, finding.effect_on_npv) {
-                (Some(a), Some(b)) => (a - b).abs() <= 1e-6 * a.abs().max(b.abs()),
-                _ => false,
-            };
-            other.kind == finding.kind && alike
-        });
+        let follows = found.iter().any(|other| same(other, &finding));
         if !follows {
             found.push(finding);
         }
     }
     found
+}
+
+/// Whether two findings are one mistake, by what it is and what it does.
+pub(super) fn same(a: &Finding, b: &Finding) -> bool {
+    let alike = match (a.effect_on_npv, b.effect_on_npv) {
+        (Some(a), Some(b)) => (a - b).abs() <= 1e-6 * a.abs().max(b.abs()),
+        _ => false,
+    };
+    a.kind == b.kind && alike
 }
 
 fn is_total(role: &TargetRole) -> bool {

@@ -45,8 +45,8 @@ pub(super) fn findings(look: &Look) -> Vec<Finding> {
         if !slip || years.len() < axis.labels.len() {
             continue;
         }
-        let cell = axis.at.nth(gaps[0]);
-        let at = SheetRange::new(&axis.at.sheet, Range::cell(cell));
+        let behind = Range::new(axis.at.nth(gaps[0]), axis.at.hull().range.last);
+        let at = SheetRange::new(&axis.at.sheet, behind);
         let mut added = vec![0.0; look.seen.appraisal.choices.len()];
         for (c, choice) in
             look.seen.appraisal.choices.iter().enumerate().filter(|(_, choice)| choice.axis == a)
@@ -76,23 +76,21 @@ pub(super) fn findings(look: &Look) -> Vec<Finding> {
     found
 }
 
-/// Whether cells of results stand behind years that are left out: what is off there follows from that.
-pub(super) fn behind_a_gap(seen: &Seen, gaps: &[Finding], place: &SheetRange) -> bool {
+/// Whether results stand under years that are broken: what is off there follows from that.
+pub(super) fn under_broken(seen: &Seen, findings: &[Finding], place: &SheetRange) -> bool {
     seen.appraisal.choices.iter().any(|choice| {
         let years = &seen.appraisal.axes[choice.axis].at;
-        let first = (0..years.len() as usize).find(|i| {
-            let cell = years.nth(*i);
-            gaps.iter().any(|gap| {
-                gap.kind == Kind::YearsBroken
-                    && gap.place.sheet.as_ref() == Some(&years.sheet)
-                    && gap.place.range.is_some_and(|range| range.contains(cell))
+        let broken = |i: usize| {
+            let cell = years.nth(i);
+            findings.iter().any(|finding| {
+                finding.kind == Kind::YearsBroken
+                    && finding.place.sheet.as_ref() == Some(&years.sheet)
+                    && finding.place.range.is_some_and(|range| range.contains(cell))
             })
-        });
-        first.is_some_and(|first| {
-            choice.targets.iter().any(|target| {
-                let behind = |cell| (first..target.held.len()).any(|i| target.at.nth(i) == cell);
-                target.at.sheet == place.sheet && behind(place.range.first) && behind(place.range.last)
-            })
+        };
+        choice.targets.iter().filter(|t| t.at.sheet == place.sheet && t.held.len() > 1).any(|target| {
+            let under = |cell| (0..target.held.len()).any(|i| target.at.nth(i) == cell && broken(i));
+            under(place.range.first) && under(place.range.last)
         })
     })
 }
