@@ -413,13 +413,13 @@ fn options(factor: impl Fn(f64) -> f64) -> Small {
     ] {
         let (mut cells, mut npv) = (String::new(), 0.0);
         for i in years.clone() {
-            let (cost, benefit) = if i == 0 { (first, 0.0) } else { (1.0, gain(i)) };
+            let (cost, benefit) = if i == 0 { (first, 0.0) } else { (5.0, gain(i)) };
             let d = factor(i as f64);
             npv += (benefit - cost) * d;
             cells.push_str(&format!("A{}: {} | {cost} | {benefit} | {d}\n", 10 + i, 2026 + i));
         }
-        // Over the baseline, which costs 1 a year.
-        let nothing: f64 = years.clone().skip(1).map(|i| -factor(i as f64)).sum();
+        // Over the baseline, which costs 5 a year.
+        let nothing: f64 = years.clone().skip(1).map(|i| -5.0 * factor(i as f64)).sum();
         let cells =
             format!("B1: 2026\nB2: '3.5% to 30, 0.5% after\nB3: 'Nothing\nB4: {}\n{cells}", npv - nothing);
         small = small.sheet(name, &cells).own_names(
@@ -445,7 +445,7 @@ fn the_ranking_of_options_over_a_baseline() {
         (1..=40).map(|i| gain(i) * factor(f64::from(i))).sum::<f64>() - first
     };
     let dunes = report.findings.iter().find(|f| f.place.sheet.as_deref() == Some("Dunes")).unwrap();
-    // Only this option's own factors: the baseline and its costs of 1 a year stay as declared.
-    let own: f64 = (1..=40).map(|i| f64::from(i)).map(|i| flat(0.035)(i) - right(i)).sum();
+    // Only this option's own factors: the baseline and its costs of 5 a year stay as declared.
+    let own: f64 = (1..=40).map(f64::from).map(|i| 5.0 * (flat(0.035)(i) - right(i))).sum();
     close(dunes.effect_on_npv.unwrap(), npv("Dunes", &flat(0.035)) - npv("Dunes", &right) - own);
 }
