@@ -21,7 +21,7 @@ use crate::tools;
 /// Eight years at 5% with a short total, and a typed factor whose cell may have a note.
 fn flawed() -> Small {
     let years: Vec<String> = (2026..2034).map(|year| year.to_string()).collect();
-    let flows = vec!["100"; 8].join(" | ");
+    let flows = ["100"; 8].join(" | ");
     let factors: Vec<String> = (0..8)
         .map(|i| {
             let col = char::from(b'B' + i as u8);
