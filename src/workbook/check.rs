@@ -9,9 +9,12 @@ use crate::model::Workbook;
 use crate::package::Package;
 use crate::patch::Cached;
 use crate::plan::{span, words};
+use crate::planfile::PlanFile;
+use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, Severity};
 use crate::references::SheetRange;
 use crate::report::Status;
+use crate::resolve::Options;
 use crate::sheets::role_words;
 
 /// One cell that does not hold what the basis gives.
@@ -56,48 +59,83 @@ impl CheckReport {
     }
 }
 
+/// What the run is told besides the workbook.
+#[derive(Clone, Debug, Default)]
+pub struct CheckRequest {
+    /// Roles for cells without a defined name: role, range.
+    pub roles: Vec<(String, String)>,
+    /// What is where, for a workbook without names; every appraisal of it is checked.
+    pub plan: Option<PlanFile>,
+}
+
 /// Checks one workbook; nothing is written.
 ///
 /// Years and signs that keep it from being valued are findings, and are set right in memory so that the rest is checked, too.
 ///
 /// # Errors
 /// Everything else that keeps the workbook from being read and valued, each with its cell.
-pub fn check(package: &Package, roles: &[(String, String)], catalogue: &Catalogue) -> Result<CheckReport> {
+pub fn check(package: &Package, request: &CheckRequest, catalogue: &Catalogue) -> Result<CheckReport> {
+    let problems = preflight(package)?;
     let book = Workbook::read(package)?;
-    let error = match Seen::look(package, &book, roles, catalogue) {
+    let mut checked = CheckReport {
+        agree: 0,
+        differences: Vec::new(),
+        findings: Vec::new(),
+        not_filled: Vec::new(),
+        problems,
+    };
+    let parts = match &request.plan {
+        Some(plan) => plan.parts(&book)?.into_iter().map(Some).collect(),
+        None => vec![None],
+    };
+    for part in parts {
+        let options = Options { roles: &request.roles, plan: part.as_ref(), ..Options::default() };
+        check_appraisal(package, &book, &options, catalogue, &mut checked)?;
+    }
+    Ok(checked)
+}
+
+/// Checks one appraisal of a workbook.
+fn check_appraisal(
+    package: &Package,
+    book: &Workbook,
+    options: &Options,
+    catalogue: &Catalogue,
+    checked: &mut CheckReport,
+) -> Result<()> {
+    let error = match Seen::look(package, book, options, catalogue) {
         Ok(seen) => {
-            return Ok(CheckReport {
-                findings: diagnose::findings(&seen, Vec::new(), |_| false)?,
-                ..report(&seen)
-            });
+            checked.findings.extend(diagnose::findings(&seen, Vec::new(), |_| false)?);
+            report(&seen, checked);
+            return Ok(());
         }
         Err(error) => error,
     };
-    if let Some(mended) = diagnose::mend(package, &book, roles, error.problems())? {
+    if let Some(mended) = diagnose::mend(package, book, options.roles, error.problems())? {
         let book = Workbook::read(&mended.package)?;
-        if let Ok(seen) = Seen::look(&mended.package, &book, roles, catalogue) {
-            let findings =
-                diagnose::findings(&seen, mended.findings(&seen), |finding| mended.repeats(finding))?;
-            return Ok(CheckReport { findings, ..report(&seen) });
+        if let Ok(seen) = Seen::look(&mended.package, &book, options, catalogue) {
+            let found = mended.findings(&seen);
+            checked.findings.extend(diagnose::findings(&seen, found, |finding| mended.repeats(finding))?);
+            report(&seen, checked);
+            return Ok(());
         }
     }
     let findings = diagnose::unvalued(error.problems());
     if findings.is_empty() {
         return Err(error);
     }
-    let problems = error.problems().to_vec();
-    Ok(CheckReport { agree: 0, differences: Vec::new(), findings, not_filled: Vec::new(), problems })
+    checked.findings.extend(findings);
+    checked.problems.extend(error.problems().iter().cloned());
+    Ok(())
 }
 
-/// The comparison cell by cell.
-fn report(seen: &Seen) -> CheckReport {
-    let mut report = CheckReport {
-        agree: 0,
-        differences: Vec::new(),
-        findings: Vec::new(),
-        not_filled: Vec::new(),
-        problems: seen.problems.clone(),
-    };
+/// The comparison cell by cell. What was said of the workbook for another appraisal of it is not said again.
+fn report(seen: &Seen, report: &mut CheckReport) {
+    for problem in &seen.problems {
+        if !report.problems.contains(problem) {
+            report.problems.push(problem.clone());
+        }
+    }
     for cells in seen.compared.chunk_by(|a, b| (a.choice, a.target) == (b.choice, b.target)) {
         let cells_that = |standing: Standing| -> Vec<SheetRange> {
             cells.iter().filter(|cell| cell.standing == standing).map(|cell| cell.at.clone()).collect()
@@ -122,7 +160,6 @@ fn report(seen: &Seen) -> CheckReport {
             );
         }
     }
-    report
 }
 
 fn difference(seen: &Seen, cell: &Compared) -> Difference {

@@ -84,7 +84,7 @@ pub fn mark(package: &Package, report: &CheckReport) -> Result<Vec<u8>> {
         (1..).map(|n| if n == 1 { sheet::NAME.to_owned() } else { format!("{} {n}", sheet::NAME) });
     let name = names.find(|name| !taken(name)).unwrap_or_default();
     let made = sheet::sheet(&name, package.file_name(), report, &noted);
-    let set_names: Vec<NewName> = marks(&made)
+    let set_names: Vec<NewName> = marks(&made, None)
         .into_iter()
         .zip([MARK, DIGEST])
         .map(|(mark, name)| NewName { name: name.to_owned(), ..mark })
@@ -111,7 +111,13 @@ fn previous(book: &Workbook) -> Vec<OwnSheet> {
     let of = |index: usize| {
         let NameTarget::Cells(at) = book.resolve(named(index, MARK)?) else { return None };
         let digest = named(index, DIGEST).map(|name| name.text.trim_matches('"').to_owned());
-        Some(OwnSheet { index, name: book.sheets[index].name.clone(), used: at.range, digest })
+        Some(OwnSheet {
+            index,
+            name: book.sheets[index].name.clone(),
+            used: at.range,
+            digest,
+            appraisal: None,
+        })
     };
     (0..book.sheets.len()).filter_map(of).collect()
 }

@@ -1,6 +1,7 @@
 //! Cells, ranges and sheet names in A1 notation, and the tokens of formulas.
 
 mod a1;
+mod area;
 mod shift;
 mod target;
 mod token;
@@ -8,6 +9,7 @@ mod token;
 use std::fmt;
 
 pub use a1::{ReferenceError, quote_sheet};
+pub use area::{Apart, Area};
 pub use shift::shift;
 pub use target::{Constant, NameTarget, parse_target};
 pub use token::{Corner, Extent, Reference, Sheets, Spanned, TableRef, Token, Tokens, tokens};
@@ -18,7 +20,7 @@ pub const MAX_ROWS: u32 = 1_048_576;
 pub const MAX_COLUMNS: u32 = 16_384;
 
 /// A cell by row and column, both counted from 0.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, serde::Serialize, serde::Deserialize)]
 pub struct Cell {
     /// Row, from 0.
     pub row: u32,
@@ -27,7 +29,7 @@ pub struct Cell {
 }
 
 /// A rectangle of cells, both corners included.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, serde::Serialize, serde::Deserialize)]
 pub struct Range {
     /// Upper left.
     pub first: Cell,

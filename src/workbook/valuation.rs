@@ -13,7 +13,8 @@ use crate::dated;
 use crate::measuring::{Further, Moments, measure_gross, measure_net, measure_units};
 use crate::outcome::{ChoiceOutcome, OwnBasis, StreamOutcome, Totals};
 use crate::problem::{Place, Problem, Result, WorkbookError};
-use crate::references::{Cell, Range, SheetRange};
+use crate::ranking::Worth;
+use crate::references::{Area, Range, SheetRange};
 use crate::welfare;
 
 /// Values every option; all problems are reported together.
@@ -101,16 +102,8 @@ pub(crate) fn from_core(error: &hence_core::Error, place: Place) -> Problem {
 }
 
 /// The cell of the axis' (or a stream's) entry `index`.
-pub(crate) fn cell_of(at: &SheetRange, index: usize) -> SheetRange {
-    let first = at.range.first;
-    let across = at.range.last.row == first.row;
-    let step = index as u32;
-    let cell = if across {
-        Cell { row: first.row, col: first.col + step }
-    } else {
-        Cell { row: first.row + step, col: first.col }
-    };
-    SheetRange { sheet: at.sheet.clone(), range: Range { first: cell, last: cell } }
+pub(crate) fn cell_of(at: &Area, index: usize) -> SheetRange {
+    SheetRange { sheet: at.sheet.clone(), range: Range::cell(at.nth(index)) }
 }
 
 /// Timing in force: the command line beats the cell, the cell the line, the line its schedule; a disagreement is a
@@ -327,7 +320,7 @@ fn value_stream(
         let amount = residual.value * stream.unit * multiplier(last);
         flows[last] += if stream.kind == StreamKind::Cost { -amount } else { amount };
     }
-    let place = || Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+    let place = || Place::area(&stream.at).called(&stream.from);
     if !flows.iter().all(|x| x.is_finite()) {
         return Err(too_large(place(), "a flow").into());
     }
@@ -360,13 +353,13 @@ fn value_stream(
     }
 }
 
-/// Net present value of an option as it stands on another curve; streams with a basis of their own keep it.
-pub(crate) fn npv_on(
+/// What an option is worth as it stands on another curve; streams with a basis of their own keep it.
+pub(crate) fn worth_on(
     appraisal: &Appraisal,
     choice: &Choice,
     outcome: &ChoiceOutcome,
     curve: &Curve,
-) -> Result<f64> {
+) -> Result<Worth> {
     let timing = outcome.timing;
     let axis = &appraisal.axes[choice.axis];
     let clock = Clock::new(axis, &choice.base.value, timing)?;
@@ -385,7 +378,7 @@ pub(crate) fn npv_on(
                 * value_stream(stream, (choice, axis, valued.weight), &clock, curve, &factors)?.0.pv,
         );
     }
-    Ok(sum(&terms))
+    Ok(Worth::of_streams(&terms))
 }
 
 /// The part of a stream that stands above (benefits) or below (costs) the line: (benefit, cost) signs.

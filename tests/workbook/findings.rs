@@ -5,7 +5,7 @@ mod plan;
 use std::path::Path;
 
 use hence_core::Catalogue;
-use hence_workbook::check::check;
+use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::findings::Kind;
 use hence_workbook::package::Package;
@@ -79,7 +79,7 @@ fn filled_samples_have_no_finding() {
         for formulas in [true, false] {
             let filled = fill(&package, &FillRequest { formulas, ..FillRequest::default() }, &catalogue);
             let filled = Package::from_bytes(sample, filled.expect("it is filled").bytes).unwrap();
-            let report = check(&filled, &[], &catalogue).expect("it is checked");
+            let report = check(&filled, &CheckRequest::default(), &catalogue).expect("it is checked");
             assert_eq!((codes(&report), report.agree), (vec![], 1628), "{sample}");
         }
     }

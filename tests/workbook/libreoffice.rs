@@ -11,7 +11,7 @@ use std::path::Path;
 use std::sync::OnceLock;
 
 use hence_core::Catalogue;
-use hence_workbook::check::check;
+use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::package::Package;
 use hence_workbook::patch::{Cached, CellWrite};
@@ -58,7 +58,7 @@ fn apart(before: &Stored, after: &Stored) -> Option<String> {
 }
 
 /// Every formula's result in `before` against the one in `after`; how many were compared, and what differs.
-fn compare(before: &Cells, after: &Cells) -> (usize, Vec<String>) {
+pub fn compare(before: &Cells, after: &Cells) -> (usize, Vec<String>) {
     let mut compared = 0;
     let mut wrong = Vec::new();
     for ((sheet, cell), old) in before.iter().filter(|(_, c)| c.formula && c.value != Stored::Nothing) {
@@ -122,8 +122,8 @@ fn output(name: &str) -> &'static [u8] {
 }
 
 /// What `hence check` says: differences, or the problems that keep it from valuing; nothing where all agrees.
-fn found(bytes: &[u8]) -> Vec<String> {
-    match check(&package(bytes), &[], &catalogue()) {
+pub fn found(bytes: &[u8]) -> Vec<String> {
+    match check(&package(bytes), &CheckRequest::default(), &catalogue()) {
         Ok(report) if report.agrees() => Vec::new(),
         Ok(report) => report.differences.iter().map(|d| format!("{} {}", d.place, d.role)).collect(),
         Err(error) => error.problems().iter().map(ToString::to_string).collect(),

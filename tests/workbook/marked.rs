@@ -5,7 +5,7 @@ use std::path::Path;
 use std::process::Command;
 
 use hence_core::Catalogue;
-use hence_workbook::check::{CheckReport, check};
+use hence_workbook::check::{CheckReport, CheckRequest, check};
 use hence_workbook::findings::{Finding, Kind};
 use hence_workbook::marked::mark;
 use hence_workbook::model::Workbook;
@@ -70,7 +70,7 @@ fn with_notes() -> Small {
 }
 
 fn checked(package: &Package) -> CheckReport {
-    check(package, &[], &Catalogue::builtin()).unwrap_or_else(|error| panic!("{error}"))
+    check(package, &CheckRequest::default(), &Catalogue::builtin()).unwrap_or_else(|error| panic!("{error}"))
 }
 
 fn marked(package: &Package) -> Package {

@@ -2,7 +2,7 @@
 
 use std::path::{Path, PathBuf};
 
-use hence_workbook::check::{CheckReport, check};
+use hence_workbook::check::{CheckReport, CheckRequest, check};
 use hence_workbook::findings::Finding;
 use hence_workbook::marked::mark_file;
 use hence_workbook::report::Status;
@@ -12,6 +12,7 @@ use crate::args::Check;
 use crate::json::{Document, Found};
 use crate::numbers::{count, money};
 use crate::progress::Progress;
+use crate::shelf::gather::{gather, skipped_words};
 use crate::terminal::{self, Terminal, escape};
 use crate::{Failure, Outcome, input, render};
 
@@ -51,8 +52,13 @@ struct DifferenceOut {
 /// Exit 0 when nothing is wrong, 1 on any finding.
 pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    let roles = super::fill::roles(&args.roles)?;
-    let paths = input::books(&args.books)?;
+    let (roles, plan) = (super::roles(&args.roles)?, super::planned(&args.roles, Some(&args.of))?);
+    let request = CheckRequest { roles, plan };
+    let gathered = gather(&args.books, None)?;
+    for line in skipped_words(&gathered.skipped) {
+        terminal.say("note", &line);
+    }
+    let paths: Vec<PathBuf> = gathered.inputs.into_iter().map(|input| input.path).collect();
     if let Some(out) = &args.out {
         one_output(&paths, out)?;
     }
@@ -64,10 +70,10 @@ pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
         let of = if paths.len() > 1 { format!(" ({} of {})", i + 1, paths.len()) } else { String::new() };
         progress.doing(&format!("checking {shown}{of}"));
         let checked_book = input::open(path).and_then(|package| {
-            let report = check(&package, &roles, &catalogue)?;
+            let report = check(&package, &request, &catalogue)?;
             if let Some(out) = &args.out {
                 let path = (!input::is_dash(path)).then_some(path.as_path());
-                mark_file(&package, &report, path, out, args.force)?;
+                mark_file(&package, &report, path, out, args.overwrite.force)?;
             }
             Ok(report)
         });
@@ -99,7 +105,7 @@ pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
         }
     }
     drop(progress);
-    terminal::print(&if args.json { Document::text(books) } else { texts.join("\n") })?;
+    terminal::print(&if args.document.json { Document::text(books) } else { texts.join("\n") })?;
     Ok(ended)
 }
 

@@ -12,7 +12,6 @@ use crate::outcome::ChoiceOutcome;
 use crate::package::Package;
 use crate::patch::Cached;
 use crate::plan::same_text;
-use crate::preflight::preflight;
 use crate::problem::{Problem, Result};
 use crate::reading::{Grid, Sheets};
 use crate::references::SheetRange;
@@ -75,18 +74,17 @@ pub enum Standing {
 }
 
 impl<'a> Seen<'a> {
-    /// Reads, values and compares a workbook.
+    /// Reads, values and compares a workbook, or one appraisal of it, after its preflight.
     ///
     /// **Errors**: everything that keeps it from being read and valued, each with its cell.
     pub fn look(
         package: &'a Package,
         book: &'a Workbook,
-        roles: &[(String, String)],
+        options: &Options,
         catalogue: &'a Catalogue,
     ) -> Result<Self> {
-        let mut problems = preflight(package)?;
-        let mut appraisal = resolve(package, book, &Options { roles, basis: None })?;
-        problems.append(&mut appraisal.problems);
+        let mut appraisal = resolve(package, book, options)?;
+        let mut problems = std::mem::take(&mut appraisal.problems);
         let (outcomes, found) = value(&appraisal, catalogue)?;
         problems.extend(found);
         let layout = Layout::new(&appraisal, &outcomes, &SheetNames::choose(&[]));

@@ -49,7 +49,7 @@ fn whole(look: &Look, c: usize, s: usize) -> Option<Finding> {
     let effect = look.in_flows(&added);
     Some(Finding {
         kind: Kind::NegativeCost,
-        place: Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
+        place: Place::area(&stream.at).called(&stream.from),
         found: "positive in every year".to_owned(),
         expected: "negative, as hence_signs says of costs".to_owned(),
         effect_on_npv: effect.npv,
@@ -64,7 +64,7 @@ fn whole(look: &Look, c: usize, s: usize) -> Option<Finding> {
 fn single(look: &Look, c: usize, s: usize) -> Option<Finding> {
     let stream = &look.seen.appraisal.choices[c].streams[s];
     let (against, odd) = (turned(stream, 1.0), turned(stream, -1.0));
-    let line = line_of(&stream.at, &look.cells)?;
+    let line = line_of(&stream.at.hull(), &look.cells)?;
     let cells: Vec<_> = line.each().collect();
     // What one formula gives along the row may well pass through zero.
     let shape = |i: usize| look.cells.get(cells[i]).and_then(|content| content.shape.as_deref());

@@ -12,7 +12,7 @@ use super::{rows, signs, sums, totals, units, years};
 use crate::appraisal::{Choice, Held, Target, TargetRole};
 use crate::findings::Finding;
 use crate::problem::Result;
-use crate::references::SheetRange;
+use crate::references::Area;
 
 /// Every structural mistake of a workbook that could be read, in no particular order.
 ///
@@ -48,9 +48,7 @@ fn call(finding: &mut Finding, seen: &Seen) {
     else {
         return;
     };
-    let inside = |at: &SheetRange| {
-        at.sheet == *sheet && at.range.contains(range.first) && at.range.contains(range.last)
-    };
+    let inside = |at: &Area| at.contains(sheet, range.first) && at.contains(sheet, range.last);
     let choices = || seen.appraisal.choices.iter();
     let streams = choices().flat_map(|choice| &choice.streams).map(|stream| (&stream.at, &stream.from));
     let targets = choices().flat_map(|choice| &choice.targets).map(|target| (&target.at, &target.from));

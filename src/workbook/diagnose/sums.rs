@@ -67,7 +67,7 @@ fn is_total(role: &TargetRole) -> bool {
 
 /// Whether a finding by formulas lies in the total or in what it rests on.
 fn explained(look: &Look, compared: &Compared, told: &[Finding]) -> bool {
-    let Some(&at) = look.cells.each(&compared.at).first() else { return false };
+    let Some(&at) = look.cells.each(&compared.at.clone().into()).first() else { return false };
     if !matches!(look.seen.held(compared), Held::Formula { .. }) {
         return false;
     }

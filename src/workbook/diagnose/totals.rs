@@ -420,7 +420,7 @@ fn finding(look: &Look, group: &[Suspect]) -> Finding {
     };
     let effect = effect(look, group);
     let at = whole(look, first.root);
-    let named = choice.targets.iter().find(|target| target.at == at);
+    let named = choice.targets.iter().find(|target| target.at.hull() == at);
     let place = Place::cells(&at.sheet, at.range);
     let place = named.map_or_else(|| place.clone(), |target| place.clone().called(&target.from));
     Finding {

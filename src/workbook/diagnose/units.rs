@@ -30,7 +30,7 @@ pub(super) fn findings(look: &Look) -> Vec<Finding> {
             choice.streams.iter().map(|s| heading_unit(look, s)).collect();
         let mut new = by_heading(look, c, choice, &units);
         for s in 0..choice.streams.len() {
-            let place = Place::cells(&choice.streams[s].at.sheet, choice.streams[s].at.range);
+            let place = Place::area(&choice.streams[s].at);
             if new
                 .iter()
                 .any(|finding| (&finding.place.sheet, finding.place.range) == (&place.sheet, place.range))
@@ -82,7 +82,7 @@ pub(super) fn unit_of(text: &str) -> Option<f64> {
 
 /// What the texts before a stream say of its unit, and the text.
 fn heading_unit(look: &Look, stream: &Stream) -> Option<(f64, String)> {
-    let headings = line_of(&stream.at, &look.cells)?.headings(&look.cells);
+    let headings = line_of(&stream.at.hull(), &look.cells)?.headings(&look.cells);
     headings.into_iter().rev().find_map(|text| Some((unit_of(&text)?, text)))
 }
 
@@ -219,7 +219,7 @@ fn within(look: &Look, c: usize, s: usize) -> Option<Finding> {
     added[c] =
         filled[from..to].iter().map(|i| stream.raw[*i] * (1.0 - 1.0 / scale) * look.worth(c, s, *i)).sum();
     let effect = look.in_flows(&added);
-    let nth = |k: usize| crate::formulas::nth(stream.at.range, filled[k]);
+    let nth = |k: usize| stream.at.nth(filled[k]);
     Some(Finding {
         kind: Kind::UnitMismatch,
         place: Place::cells(&stream.at.sheet, Range::new(nth(from), nth(to - 1))).called(&stream.from),
@@ -254,7 +254,7 @@ fn finding(
     let effect = look.in_flows(&added);
     Finding {
         kind: Kind::UnitMismatch,
-        place: Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
+        place: Place::area(&stream.at).called(&stream.from),
         found,
         expected: format!("{} times that, in the unit of the other streams", figure(1.0 / scale)),
         effect_on_npv: effect.npv,

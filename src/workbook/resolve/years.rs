@@ -3,11 +3,11 @@
 use chrono::{Days, NaiveDate};
 use hence_core::parse_financial_year;
 
-use crate::appraisal::{Axis, Base, Direction, Given, Label};
+use crate::appraisal::{Axis, Base, COMMAND_LINE, Direction, Given, Label};
 use crate::clock::label_kind;
 use crate::problem::{Place, Problem};
 use crate::reading::{ReadCell, Value};
-use crate::references::SheetRange;
+use crate::references::{Cell, SheetRange};
 use crate::roles::Role;
 
 use super::cells::{error_value, number, one, shown, single, text_as_number};
@@ -28,7 +28,7 @@ pub(super) fn direction(at: &SheetRange) -> Option<Direction> {
 
 /// Reads the years (or the offsets) of a role, or reports why they are none.
 pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
-    let count = named.at.range.len();
+    let count = named.area.len();
     let Some(direction) = direction(&named.at).filter(|_| (2..=MAX_YEARS).contains(&count)) else {
         let (rows, cols) = (named.at.range.rows(), named.at.range.cols());
         context.report(
@@ -41,10 +41,11 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
         );
         return None;
     };
-    let grid = context.grid(&named.at)?;
+    let cells = context.along(&named.area)?;
     let date1904 = context.book.date1904;
     let mut labels: Vec<Option<Label>> = Vec::new();
-    for (cell, content) in grid.iter() {
+    for (cell, content) in cells {
+        let content = &content;
         let place = Place::cells(&named.at.sheet, one(cell)).called(&named.from);
         let read = if named.name.role == Role::Offsets {
             offset(content, place.clone())
@@ -59,7 +60,11 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
                 }
                 labels.push(Some(label));
             }
-            Err(problem) => {
+            Err(mut problem) => {
+                if in_headings(context, &named.at.sheet, cell) {
+                    let hint = "headings of a table are always texts: name a row of years outside the table";
+                    problem.hint = Some(hint.to_owned());
+                }
                 context.report(*problem);
                 labels.push(None);
             }
@@ -68,7 +73,16 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
     // A faulty year ends the run, but not before the flows beside it are checked too.
     let any = labels.iter().flatten().next()?.clone();
     let labels = labels.into_iter().map(|label| label.unwrap_or_else(|| any.clone())).collect();
-    Some(Axis { at: named.at.clone(), direction, labels })
+    Some(Axis { at: named.area.clone(), direction, labels })
+}
+
+/// Whether a cell is one of a table's headings.
+fn in_headings(context: &mut Context, sheet: &str, cell: Cell) -> bool {
+    let facts = context.facts(sheet);
+    facts.is_some_and(|facts| {
+        let headings = |table: &crate::model::Table| cell.row < table.range.first.row + table.header_rows;
+        facts.tables.iter().any(|table| table.range.contains(cell) && headings(table))
+    })
 }
 
 /// One cell of the years.
@@ -199,8 +213,22 @@ pub(super) fn date(serial: f64, date1904: bool) -> Option<NaiveDate> {
     epoch.checked_add_days(Days::new(days))
 }
 
-/// Reads the base for these years, or reports why it is none.
-pub(super) fn base(context: &mut Context, named: Option<&Named>, axis: &Axis) -> Option<Given<Base>> {
+/// Reads the base for these years, the command line's before the workbook's, or reports why it is none.
+pub(super) fn base(
+    context: &mut Context,
+    named: Option<&Named>,
+    told: Option<&str>,
+    axis: &Axis,
+) -> Option<Given<Base>> {
+    if let Some(told) = told {
+        let instead = Named::told(Role::Base, "--base", told);
+        let given = read_base(context, Some(&instead), axis)?;
+        return Some(Given { at: named.and_then(Named::cells), from: COMMAND_LINE.to_owned(), ..given });
+    }
+    read_base(context, named, axis)
+}
+
+fn read_base(context: &mut Context, named: Option<&Named>, axis: &Axis) -> Option<Given<Base>> {
     let Some(named) = named else {
         // Numbers and offsets count from their own zero; anything else needs a base, reported as missing.
         let zero = matches!(axis.labels.first(), Some(Label::Number(_) | Label::Offset(_)));
@@ -221,7 +249,7 @@ pub(super) fn base(context: &mut Context, named: Option<&Named>, axis: &Axis) ->
             return None;
         }
     };
-    let given = |value| Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() });
+    let given = |value| Some(Given { value, at: named.cells(), from: named.from.clone() });
     let first = axis.labels.first()?;
     match (&stated, first) {
         (Label::Year(year), Label::Year(_) | Label::Number(_) | Label::Offset(_)) => given(Base::Year(*year)),

@@ -3,7 +3,7 @@
 use std::collections::BTreeMap;
 
 use hence_core::Catalogue;
-use hence_workbook::check::{CheckReport, check};
+use hence_workbook::check::{CheckReport, CheckRequest, check};
 use hence_workbook::findings::{Finding, Kind};
 
 use crate::small::Small;
@@ -165,7 +165,8 @@ impl Plan {
 }
 
 pub fn checked(small: &Small) -> CheckReport {
-    check(&small.open().0, &[], &Catalogue::builtin()).unwrap_or_else(|error| panic!("{error}"))
+    check(&small.open().0, &CheckRequest::default(), &Catalogue::builtin())
+        .unwrap_or_else(|error| panic!("{error}"))
 }
 
 pub fn codes(report: &CheckReport) -> Vec<&'static str> {

@@ -9,6 +9,7 @@ use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::findings::Kind;
 use hence_workbook::model::Workbook;
 use hence_workbook::package::Package;
+use hence_workbook::resolve::Options;
 
 use crate::corpus::prepared;
 use crate::numbers::random;
@@ -17,7 +18,8 @@ use crate::numbers::random;
 fn said(package: &Package, roles: &[(String, String)]) -> Vec<String> {
     let book = Workbook::read(package).expect("a workbook");
     let catalogue = Catalogue::builtin();
-    let seen = Seen::look(package, &book, roles, &catalogue).unwrap_or_else(|error| panic!("{error}"));
+    let seen = Seen::look(package, &book, &Options { roles, ..Options::default() }, &catalogue)
+        .unwrap_or_else(|error| panic!("{error}"));
     let mut found = findings(&seen).expect("cells are read");
     // Some of the random workbooks leave a year out on purpose, of which hence warns.
     let gap = seen.problems.iter().any(|problem| problem.code == "years-gap");

@@ -6,11 +6,12 @@
 use std::collections::BTreeMap;
 
 use hence_core::Catalogue;
-use hence_workbook::check::check;
+use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::diagnose::Seen;
 use hence_workbook::diagnose::structure::findings;
 use hence_workbook::findings::Finding;
 use hence_workbook::references::{Cell, Range};
+use hence_workbook::resolve::Options;
 
 use crate::small::Small;
 
@@ -161,14 +162,16 @@ impl Plan {
     pub fn findings(&self) -> Vec<Finding> {
         let (package, book) = self.small().open();
         let catalogue = Catalogue::builtin();
-        let seen = Seen::look(&package, &book, &[], &catalogue).unwrap_or_else(|error| panic!("{error}"));
+        let seen = Seen::look(&package, &book, &Options::default(), &catalogue)
+            .unwrap_or_else(|error| panic!("{error}"));
         findings(&seen).expect("cells are read")
     }
 
     /// What `check` finds, with all that keeps the plan from being valued as it stands.
     pub fn checked(&self) -> Vec<Finding> {
         let (package, _) = self.small().open();
-        let report = check(&package, &[], &Catalogue::builtin()).unwrap_or_else(|error| panic!("{error}"));
+        let report = check(&package, &CheckRequest::default(), &Catalogue::builtin())
+            .unwrap_or_else(|error| panic!("{error}"));
         report.findings
     }
 

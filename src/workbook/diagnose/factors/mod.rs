@@ -73,7 +73,7 @@ fn of_rows(seen: &Seen, rows: &mut Vec<Series>, known: &impl Fn(&SheetRange) -> 
     all.extend(implied_rows(seen).into_iter().filter(|row| !follows(row, rows)));
     for row in &mut all {
         let ranges = row.ranges.clone();
-        row.points.retain(|p| !known(&cell_of(&ranges[p.range], p.index)));
+        row.points.retain(|p| !known(&cell_of(&ranges[p.range].clone().into(), p.index)));
     }
     let read = |row: &Series| {
         let known = Known::of(seen, row);
@@ -229,7 +229,7 @@ fn of_mixed(seen: &Seen, row: &Series, known: &Known, found: &Mixed) -> Finding 
     let first = &row.ranges[0];
     let beside = row.ranges.iter().filter(|range| range.sheet == first.sheet);
     let cells: Vec<SheetRange> =
-        beside.flat_map(|range| wrong.iter().map(|&index| cell_of(range, index))).collect();
+        beside.flat_map(|range| wrong.iter().map(|&index| cell_of(&range.clone().into(), index))).collect();
     let effect = effect(seen, row);
     let said = words::of_mixed(seen, row, found);
     let place = span(&cells).unwrap_or_else(|| place(row)).called(&row.called);

@@ -208,7 +208,7 @@ fn as_declared(seen: &Seen, c: usize, users: Vec<User>) -> Series {
     };
     Series {
         source: Source::Totals,
-        ranges: vec![axis.at.clone()],
+        ranges: vec![axis.at.hull()],
         called: String::new(),
         users,
         curve: Rc::new(outcome.curve.clone()),
