@@ -168,7 +168,7 @@ fn several_workbooks_and_a_folder() {
     let empty = tempfile::tempdir().unwrap();
     let output = run(&["check", empty.path().to_str().unwrap()]);
     assert_eq!(code(&output), 2);
-    assert!(stderr(&output).contains("the folder holds no workbook"), "{}", stderr(&output));
+    assert!(stderr(&output).contains("no workbooks are in it"), "{}", stderr(&output));
 }
 
 #[test]
