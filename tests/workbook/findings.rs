@@ -252,6 +252,31 @@ fn another_rate_that_is_no_kind_of_mistake() {
 }
 
 #[test]
+fn days_over_365_for_years_between_dates() {
+    // 1 April 2026 (serial 46113) and its anniversaries; 29 February of 2028, 2032 and 2036 lie between.
+    let days = [0, 365, 731, 1096, 1461, 1826, 2192, 2557, 2922, 3287, 3653];
+    let right: Vec<f64> = (0..=10).map(|n| flat(0.05)(f64::from(n))).collect();
+    let plan = |factors: &[f64]| {
+        let row = |(n, d): (usize, &f64)| {
+            format!("A{}: @{} | {} | {d}\n", 5 + n, 46113 + days[n], 100 - 10 * n as i32)
+        };
+        let rows: String = factors.iter().enumerate().map(row).collect();
+        let cells = format!("B1: @46113\nB2: '5%\n{rows}");
+        let names =
+            "hence_base B1, hence_basis B2, hence_years A5:A15, hence_flow_net B5:B15, hence_factor C5:C15";
+        plan::checked(&Small::default().sheet("Plan", &cells).names(names))
+    };
+    assert_eq!(codes(&plan(&right)), [""; 0]);
+    let report = plan(&days.map(|n| flat(0.05)(f64::from(n) / 365.0)));
+    assert_eq!(codes(&report), ["differs"]);
+    assert!(
+        report.findings[0].words.contains("days from the base over 365"),
+        "{}",
+        show(&report.findings[0])
+    );
+}
+
+#[test]
 fn one_cell_alone_differs() {
     let plan = Plan::new(UK, 60, |t| if t == 20.0 { 0.51 } else { uk(t) });
     let finding = plan.only(Kind::Differs);

@@ -239,6 +239,22 @@ pub fn unknown(seen: &Seen, row: &Series) -> Said {
     }
 }
 
+/// Days over 365 for years.
+pub fn by_days(seen: &Seen, row: &Series) -> Said {
+    let words = format!(
+        "days from the base over 365 reproduce all {} {}; years are counted by anniversaries of the base date, and only what \
+         is over by days, so that a leap day is no more than its share of a year",
+        row.points.len(),
+        noun(row)
+    );
+    let widest = widest(row);
+    Said {
+        found: format!("days over 365: {}", value(seen, row, widest, widest.found)),
+        expected: format!("{}: {}", basis(seen, row), value(seen, row, widest, widest.declared)),
+        words,
+    }
+}
+
 fn noun(row: &Series) -> &'static str {
     match row.source {
         Source::Factors => "factors",
