@@ -92,6 +92,85 @@ fn what_cannot_be_checked_says_why() {
     assert!(stderr(&output).contains("Appraisal!B4 [hence_basis]"), "{}", stderr(&output));
 }
 
+/// Filled with plain numbers at a flat rate, after which bands were declared: factors of a flat 3.5% for bands.
+fn flat_for_bands() -> Book {
+    let book = plan(&[]);
+    assert_eq!(code(&run(&["fill", book.arg(), "--write", "values"])), 0);
+    let filled = Package::open(&book.beside("plan.audited.xlsx")).unwrap();
+    Book::of("plan.xlsx", with(&filled, SHEET, &[("B4", "3.5% to 1, 3% after")]))
+}
+
+#[test]
+fn a_finding_says_kind_place_evidence_effect_and_how_sure_it_is() {
+    let book = flat_for_bands();
+    let output = run(&["check", book.arg()]);
+    assert_eq!(code(&output), 1, "{}", stderr(&output));
+    let text = stdout(&output);
+    for part in [
+        "flat-for-bands  Appraisal!B28:BJ28 [hence_factor]\n",
+        "a flat 3.5% reproduces all 61 factors",
+        "the declared basis is 3.5% to 1, 3% after",
+        // 600/1.035 (1/1.035 - 1/1.03)
+        "the NPV is 2.72 too low",
+        "1 finding;",
+    ] {
+        assert!(text.contains(part), "{part} is missing from:\n{text}");
+    }
+    let document: serde_json::Value =
+        serde_json::from_str(&stdout(&run(&["check", book.arg(), "--json"]))).unwrap();
+    assert_eq!(document["schema"], 1);
+    let found = &document["books"][0];
+    assert_eq!((&found["input"], &found["status"]), (&book.arg().into(), &"problems".into()));
+    let findings = found["findings"].as_array().unwrap();
+    assert_eq!(findings.len(), 1);
+    let keys: Vec<&str> = findings[0].as_object().unwrap().keys().map(String::as_str).collect();
+    assert_eq!(keys, ["code", "confidence", "effect_on_npv", "expected", "found", "place", "words"]);
+    assert_eq!(
+        (&findings[0]["code"], &findings[0]["place"]),
+        (&"flat-for-bands".into(), &"Appraisal!B28:BJ28".into())
+    );
+    let effect = findings[0]["effect_on_npv"].as_f64().unwrap();
+    let expected = 600.0 / 1.035 * (1.0 / 1.035 - 1.0 / 1.03);
+    assert!((effect - expected).abs() < 1e-9, "{effect}, {expected}");
+    assert!((0.9..1.0).contains(&findings[0]["confidence"].as_f64().unwrap()));
+    book.is_clean(&[]);
+}
+
+#[test]
+fn several_workbooks_and_a_folder() {
+    let (right, wrong) = (filled(), flat_for_bands());
+    let folder = tempfile::tempdir().unwrap();
+    std::fs::create_dir(folder.path().join("south")).unwrap();
+    std::fs::write(folder.path().join("a.xlsx"), wrong.bytes()).unwrap();
+    std::fs::write(folder.path().join("south/b.xlsx"), right.bytes()).unwrap();
+    std::fs::write(folder.path().join("c.xlsx"), b"not a workbook").unwrap();
+    // Neither a workbook nor the mark of one that is open.
+    std::fs::write(folder.path().join("notes.txt"), b"notes").unwrap();
+    std::fs::write(folder.path().join("~$a.xlsx"), b"open").unwrap();
+    let whole = folder.path().to_str().unwrap();
+    let output = run(&["check", whole, right.arg(), "--json"]);
+    assert_eq!(code(&output), 1, "{}", stderr(&output));
+    let document: serde_json::Value = serde_json::from_str(&stdout(&output)).unwrap();
+    let books = document["books"].as_array().unwrap();
+    let told: Vec<(&str, &str, usize)> = books
+        .iter()
+        .map(|book| {
+            let input = book["input"].as_str().unwrap();
+            let name = input.rsplit(['/', '\\']).next().unwrap();
+            (name, book["status"].as_str().unwrap(), book["findings"].as_array().unwrap().len())
+        })
+        .collect();
+    let expected =
+        [("a.xlsx", "problems", 1), ("c.xlsx", "failed", 0), ("b.xlsx", "done", 0), ("plan.xlsx", "done", 0)];
+    assert_eq!(told, expected);
+    assert!(stderr(&output).contains("c.xlsx: not checked"), "{}", stderr(&output));
+    assert_eq!(code(&run(&["check", right.arg(), right.arg()])), 0);
+    let empty = tempfile::tempdir().unwrap();
+    let output = run(&["check", empty.path().to_str().unwrap()]);
+    assert_eq!(code(&output), 2);
+    assert!(stderr(&output).contains("no workbooks are in it"), "{}", stderr(&output));
+}
+
 #[test]
 fn a_marked_copy_holds_the_findings() {
     let book = changed(&[("C28", "0.97")]);

@@ -139,7 +139,13 @@ fn two_timings_in_one_row() {
     let finding =
         Plan::new("4%", 30, |i| flat(0.04)(if i < 10.0 { i } else { i + 1.0 })).only(Kind::MixedTiming);
     assert_eq!(finding.place.to_string(), "Plan!D20:D40 [hence_factor]");
-    assert!(finding.words.contains("10 years from 2026 to 2035"), "{}", show(&finding));
+    assert!(
+        finding
+            .words
+            .contains("21 of 31 factors (2036 to 2056) have every flow a whole year later than declared"),
+        "{}",
+        show(&finding)
+    );
 }
 
 #[test]
@@ -210,7 +216,7 @@ fn factors_of_so_many_places() {
             let finding = plan.only(Kind::RoundedFactors);
             assert!(finding.words.contains(&format!("rounded to {places} places")), "{}", show(&finding));
             close(finding.effect_on_npv.unwrap(), added(&plan, factor));
-            assert!(finding.words.contains("to the NPV"), "{}", show(&finding));
+            assert!(finding.words.contains("the NPV"), "{}", show(&finding));
         }
     }
 }
@@ -243,6 +249,31 @@ fn factors_that_no_rate_gives() {
 fn another_rate_that_is_no_kind_of_mistake() {
     let finding = Plan::new("3.5%", 60, flat(0.04)).only(Kind::Differs);
     assert!(finding.words.contains("a flat 4%"), "{}", show(&finding));
+}
+
+#[test]
+fn days_over_365_for_years_between_dates() {
+    // 1 April 2026 (serial 46113) and its anniversaries; 29 February of 2028, 2032 and 2036 lie between.
+    let days = [0, 365, 731, 1096, 1461, 1826, 2192, 2557, 2922, 3287, 3653];
+    let right: Vec<f64> = (0..=10).map(|n| flat(0.05)(f64::from(n))).collect();
+    let plan = |factors: &[f64]| {
+        let row = |(n, d): (usize, &f64)| {
+            format!("A{}: @{} | {} | {d}\n", 5 + n, 46113 + days[n], 100 - 10 * n as i32)
+        };
+        let rows: String = factors.iter().enumerate().map(row).collect();
+        let cells = format!("B1: @46113\nB2: '5%\n{rows}");
+        let names =
+            "hence_base B1, hence_basis B2, hence_years A5:A15, hence_flow_net B5:B15, hence_factor C5:C15";
+        plan::checked(&Small::default().sheet("Plan", &cells).names(names))
+    };
+    assert_eq!(codes(&plan(&right)), [""; 0]);
+    let report = plan(&days.map(|n| flat(0.05)(f64::from(n) / 365.0)));
+    assert_eq!(codes(&report), ["differs"]);
+    assert!(
+        report.findings[0].words.contains("days from the base over 365"),
+        "{}",
+        show(&report.findings[0])
+    );
 }
 
 #[test]
@@ -412,13 +443,13 @@ fn options(factor: impl Fn(f64) -> f64) -> Small {
     ] {
         let (mut cells, mut npv) = (String::new(), 0.0);
         for i in years.clone() {
-            let (cost, benefit) = if i == 0 { (first, 0.0) } else { (1.0, gain(i)) };
+            let (cost, benefit) = if i == 0 { (first, 0.0) } else { (5.0, gain(i)) };
             let d = factor(i as f64);
             npv += (benefit - cost) * d;
             cells.push_str(&format!("A{}: {} | {cost} | {benefit} | {d}\n", 10 + i, 2026 + i));
         }
-        // Over the baseline, which costs 1 a year.
-        let nothing: f64 = years.clone().skip(1).map(|i| -factor(i as f64)).sum();
+        // Over the baseline, which costs 5 a year.
+        let nothing: f64 = years.clone().skip(1).map(|i| -5.0 * factor(i as f64)).sum();
         let cells =
             format!("B1: 2026\nB2: '3.5% to 30, 0.5% after\nB3: 'Nothing\nB4: {}\n{cells}", npv - nothing);
         small = small.sheet(name, &cells).own_names(
@@ -444,7 +475,7 @@ fn the_ranking_of_options_over_a_baseline() {
         (1..=40).map(|i| gain(i) * factor(f64::from(i))).sum::<f64>() - first
     };
     let dunes = report.findings.iter().find(|f| f.place.sheet.as_deref() == Some("Dunes")).unwrap();
-    // Only this option's own factors: the baseline and its costs of 1 a year stay as declared.
-    let own: f64 = (1..=40).map(|i| f64::from(i)).map(|i| flat(0.035)(i) - right(i)).sum();
+    // Only this option's own factors: the baseline and its costs of 5 a year stay as declared.
+    let own: f64 = (1..=40).map(f64::from).map(|i| 5.0 * (flat(0.035)(i) - right(i))).sum();
     close(dunes.effect_on_npv.unwrap(), npv("Dunes", &flat(0.035)) - npv("Dunes", &right) - own);
 }

@@ -187,7 +187,13 @@ fn told(finding: &Finding) -> String {
         None => "its effect on the NPV is not known".to_owned(),
     };
     let ranking = finding.ranking.as_ref().map(|ranking| format!("; {ranking}")).unwrap_or_default();
-    text.push_str(&format!("    {effect}{ranking}; {:.0}% sure\n", 100.0 * finding.confidence));
+    // Nothing that is inferred is wholly sure.
+    let sure = if finding.confidence > 0.99 {
+        "over 99".to_owned()
+    } else {
+        format!("{:.0}", 100.0 * finding.confidence)
+    };
+    text.push_str(&format!("    {effect}{ranking}; {sure}% sure\n"));
     text
 }
 

@@ -55,7 +55,8 @@ pub(crate) fn findings(
     findings.extend(by_factors);
     // What a total holds may be told by its numbers alone, where no factors give them.
     let consequences = consequences::Consequences::of(seen, &rows);
-    findings.extend(structure::of_totals(&look, &findings, |cell| consequences.follows(cell)));
+    let by_totals = structure::of_totals(&look, &findings, |cell| consequences.follows(cell));
+    findings.extend(by_totals);
     differs::add(seen, &rows, &mut findings)?;
     // What only follows has explained its cells by now, and is not told again.
     let later = findings.split_off(told);

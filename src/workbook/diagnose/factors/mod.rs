@@ -29,6 +29,7 @@ use series::{Point, Source, User, factor_rows, implied_rows, npvs_with};
 use totals::{Total, total};
 use unnamed::unnamed_rows;
 
+use crate::appraisal::{Base, Label};
 use crate::diagnose::effect::Effect;
 use crate::diagnose::{Compared, Seen};
 use crate::findings::{Finding, Kind};
@@ -252,12 +253,31 @@ fn some_off(seen: &Seen, row: &Series, off: &[usize]) -> Finding {
 
 /// A row that nothing gives. Present values over flows are factors only if they look like such.
 fn unknown(seen: &Seen, row: &Series) -> Finding {
+    if by_days(seen, row) {
+        let said = words::by_days(seen, row);
+        return finding(Kind::Differs, place(row), said, effect(seen, row), confidence(row, &[], 0));
+    }
     let near = row.points.iter().all(|p| p.found > 0.0 && p.found < 1.6);
     let falls = row.points.windows(2).filter(|pair| pair[1].found <= pair[0].found).count();
     let like = near && (row.ranges.len() > 1 || 2 * falls > row.points.len());
     let kind = if row.source != Source::Present || like { Kind::NoKnownRate } else { Kind::Differs };
     // The more factors, the less likely that a reading was missed by chance.
     finding(kind, place(row), words::unknown(seen, row), effect(seen, row), confidence(row, &[], 0))
+}
+
+/// Whether flows on dates are discounted by days over 365, which counts every leap day as more than its share of a year.
+fn by_days(seen: &Seen, row: &Series) -> bool {
+    let choice = &seen.appraisal.choices[row.users[0].0];
+    let labels = &seen.appraisal.axes[choice.axis].labels;
+    let given = |p: &Point| {
+        let (Label::Date(date), Base::Date(base)) = (&labels[p.index], &choice.base.value) else {
+            return false;
+        };
+        let years = (*date - *base).num_days() as f64 / 365.0;
+        let factor = row.curve.factor(years);
+        factor.is_ok_and(|factor| (p.found - factor).abs() <= Series::tolerance(p, factor))
+    };
+    row.points.iter().all(given)
 }
 
 fn effect(seen: &Seen, row: &Series) -> Effect {

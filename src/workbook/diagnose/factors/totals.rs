@@ -37,7 +37,7 @@ pub struct Total {
     pub reading: Reading,
     /// Where timings are mixed, the other one and what follows it.
     pub second: Option<Second>,
-    /// The cell that shows it best: the net present value, where that differs.
+    /// The cell that shows it: the net present value, unless that follows from other totals that differ.
     pub cell: Compared,
     /// How many totals it gives.
     pub given: usize,

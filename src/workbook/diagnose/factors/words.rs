@@ -65,7 +65,7 @@ pub fn of_reading(
         noun(row),
     );
     if kind == Kind::RoundedFactors {
-        let moves = effect.map_or_else(String::new, |x| format!(", which adds {} to the NPV", amount(x)));
+        let moves = effect.map_or_else(String::new, |x| format!(", which {}", moves(x)));
         words = format!(
             "the {} are those of {} {what}: {all}{} agree {close}{moves}",
             noun(row),
@@ -80,8 +80,10 @@ pub fn of_reading(
     if let Some(formula) = formula(seen, row) {
         words.push_str(&format!("; the first of them is `{formula}`"));
     }
-    if row.ranges.len() > 1 {
-        let others = row.ranges[1..].iter().map(ToString::to_string).collect::<Vec<_>>();
+    let place = super::place(row);
+    let others = row.ranges.iter().filter(|range| !place.holds(range)).map(ToString::to_string);
+    let others: Vec<String> = others.collect();
+    if !others.is_empty() {
         words.push_str(&format!("; {} likewise", others.join(", ")));
     }
     if kind == Kind::MixedTiming {
@@ -100,23 +102,27 @@ pub fn of_reading(
 
 /// Two timings in one row.
 pub fn of_mixed(seen: &Seen, row: &Series, found: &Mixed) -> Said {
-    let years: Vec<String> = found.others.iter().map(|&i| year(seen, row, &row.points[i])).collect();
-    let which = match years.as_slice() {
-        [one] => one.clone(),
-        [first, .., last] => format!("{} years from {first} to {last}", years.len()),
-        [] => String::new(),
-    };
     let declared = When::declared(row.timing);
-    let rounded = found.rounding.map(|r| format!(", {}", rounding(r))).unwrap_or_default();
-    let said = |when: When| {
-        if when == declared { "the declared timing".to_owned() } else { timing(declared, when) }
+    let n = row.points.len();
+    let most = || (0..n).filter(|i| !found.others.contains(i)).collect::<Vec<usize>>();
+    // Those that are not as declared come first.
+    let (first, which, second) = match found.rest == declared {
+        true => (found.most, most(), found.rest),
+        false => (found.rest, found.others.clone(), found.most),
     };
+    let years: Vec<String> = which.iter().map(|&i| year(seen, row, &row.points[i])).collect();
+    let years = match years.as_slice() {
+        [first, .., last] => format!("{first} to {last}"),
+        some => some.concat(),
+    };
+    let rounded = found.rounding.map(|r| format!(", all {}", rounding(r))).unwrap_or_default();
     let words = format!(
-        "{which} of {} {} follow {}, the rest {}{rounded}; the declared timing is {}",
-        row.points.len(),
+        "{} of {n} {} ({years}) have {}, the other {} have {}{rounded}; the declared timing is {}",
+        which.len(),
         noun(row),
-        said(found.rest),
-        said(found.most),
+        timing(declared, first),
+        n - which.len(),
+        timing(declared, second),
         row.timing,
     );
     let widest = widest(row);
@@ -130,16 +136,14 @@ pub fn of_mixed(seen: &Seen, row: &Series, found: &Mixed) -> Said {
 /// A reading that gives the totals.
 pub fn of_total(seen: &Seen, total: &Total, known: &Known, effect: Option<f64>) -> Said {
     let (row, reading) = (&total.rows[0], &total.reading);
-    let timed = |when: When| {
-        if when == known.declared { "the declared timing".to_owned() } else { timing(known.declared, when) }
-    };
+    let timed = |when: When| timing(known.declared, when);
     let what = match (total.kinds[0], total.second) {
         (_, Some(Second::Others(when))) => {
-            format!("costs by {}, all else by {}", timed(reading.when), timed(when))
+            format!("costs with {}, all else with {}", timed(reading.when), timed(when))
         }
         (_, Some(Second::From(index, when))) => {
             let year = year(seen, row, &row.points[index]);
-            format!("{} until, and from {year} on {}", timed(reading.when), timed(when))
+            format!("{} before {year} and {} from then on", timed(reading.when), timed(when))
         }
         (Kind::OffByPeriod, None) => timing(known.declared, reading.when),
         (Kind::RoundedFactors, None) => {
@@ -152,7 +156,7 @@ pub fn of_total(seen: &Seen, total: &Total, known: &Known, effect: Option<f64>) 
         if total.given == 1 { "the total".to_owned() } else { format!("all {} totals", total.given) };
     let mut words = format!("{what} would give {totals}; the declared basis is {basis}");
     if let (Kind::RoundedFactors, Some(effect)) = (total.kinds[0], effect) {
-        words.push_str(&format!("; that adds {} to the NPV", amount(effect)));
+        words.push_str(&format!("; that {}", moves(effect)));
     }
     if let Held::Formula { text, .. } = seen.held(&total.cell) {
         words.push_str(&format!("; the cell holds `={text}`"));
@@ -235,6 +239,22 @@ pub fn unknown(seen: &Seen, row: &Series) -> Said {
     }
 }
 
+/// Days over 365 for years.
+pub fn by_days(seen: &Seen, row: &Series) -> Said {
+    let words = format!(
+        "days from the base over 365 reproduce all {} {}; years are counted by anniversaries of the base date, and only what \
+         is over by days, so that a leap day is no more than its share of a year",
+        row.points.len(),
+        noun(row)
+    );
+    let widest = widest(row);
+    Said {
+        found: format!("days over 365: {}", value(seen, row, widest, widest.found)),
+        expected: format!("{}: {}", basis(seen, row), value(seen, row, widest, widest.declared)),
+        words,
+    }
+}
+
 fn noun(row: &Series) -> &'static str {
     match row.source {
         Source::Factors => "factors",
@@ -299,9 +319,11 @@ fn list(bands: &Bands) -> String {
     rates.collect::<Vec<_>>().join(", ")
 }
 
+/// When flows stand, against the declared timing.
 fn timing(declared: When, found: When) -> String {
     let mut words = match found.later {
-        0.0 => "the declared curve".to_owned(),
+        _ if found == declared => return "the declared timing".to_owned(),
+        0.0 => "every flow in its year".to_owned(),
         later => {
             let (by, way) = (later.abs(), if later > 0.0 { "later" } else { "earlier" });
             let by = match by {
@@ -309,16 +331,16 @@ fn timing(declared: When, found: When) -> String {
                 1.0 => "a whole year".to_owned(),
                 by => format!("{by} years"),
             };
-            format!("discounting every flow as if it stood {by} {way} than declared")
+            format!("every flow {by} {way} than declared")
         }
     };
     if found.averaged && !declared.averaged {
-        words.push_str(" with the mean of the factors at the start and the end of the year");
+        words.push_str(", with the mean of the factors at the start and the end of the year");
     } else if declared.averaged && !found.averaged {
-        words.push_str(" with one moment of the year instead of the mean of its start and end");
+        words.push_str(", at one moment of the year instead of the mean of its start and end");
     }
     if found.clamped {
-        words.push_str(", and nothing before the base");
+        words.push_str(", but none before the base");
     }
     words
 }
@@ -338,6 +360,15 @@ fn codes(kinds: &[Kind]) -> String {
 /// A rate to a tenth of a thousandth of a percent.
 fn rate(rate: f64) -> String {
     percent((rate * 1e6).round() / 1e6)
+}
+
+/// What a mistake does to the net present value.
+fn moves(effect: f64) -> String {
+    match effect {
+        0.0 => "leaves the NPV as it is".to_owned(),
+        x if x > 0.0 => format!("adds {} to the NPV", amount(x)),
+        x => format!("takes {} off the NPV", amount(-x)),
+    }
 }
 
 /// An amount to six digits.
