@@ -38,7 +38,7 @@ impl Default for Limits {
 }
 
 impl Limits {
-    /// The memory of a process in MB, where none is given: a workbook of a million cells takes a sixth of it.
+    /// The memory of a process in MB, where none is given: a million cells with formulas take a fifth of it.
     pub const MEMORY_MB: NonZeroU64 = NonZeroU64::new(1024).unwrap();
     /// Its time in seconds, where none is given.
     pub const TIME_SECONDS: NonZeroU64 = NonZeroU64::new(600).unwrap();
