@@ -63,13 +63,13 @@ unsafe fn distribution(text: *const c_char, quantity: Quantity) -> Result<Distri
 /// In cells: HENCE.DRAWS.
 ///
 /// Arguments: `preference`, `hazard`, `elasticity`, `growth` (in, NUL-ended UTF-8, borrowed, not NULL but for `hazard`, where
-/// NULL is none): a value ("1%", of the elasticity "1.5"), "normal mean 1% sd 0.3%", the same with "within 0% to 2%",
-/// "uniform 1% to 3%", "triangular 1%, 1.5%, 2%" or "0.3 at 1%, 0.7 at 2%"; `offsets` (in, `n` doubles, years from the base,
-/// -10,000 to 10,000); `flows` (in, `rows` x `n` doubles, net, row by row: the option i begins at number i x n); `rows` (in,
-/// at least 1); `n` (in; 0 makes every value 0); `count` (in), how many draws, 1 to 10,000,000; `seed` (in); `threads` (in,
-/// at least 1) that share the work; `rates` (out, `count` doubles, or NULL where they are not wanted), the rate of each
-/// draw; `values` (out, `rows` x `count` doubles, row by row: the draws of option i begin at number i x count); outputs may
-/// overlap no other argument; `error` (out, may be NULL).
+/// NULL is none): a value ("1%", of the elasticity "1.5", of the hazard also "every 100 years"), "normal mean 1% sd 0.3%", the
+/// same with "within 0% to 2%", "uniform 1% to 3%", "triangular 1%, 1.5%, 2%" or "0.3 at 1%, 0.7 at 2%"; `offsets` (in, `n`
+/// doubles, years from the base, -10,000 to 10,000); `flows` (in, `rows` x `n` doubles, net, row by row: the option i begins
+/// at number i x n); `rows` (in, at least 1); `n` (in; 0 makes every value 0); `count` (in), how many draws, 1 to 10,000,000;
+/// `seed` (in); `threads` (in, at least 1) that share the work; `rates` (out, `count` doubles, or NULL where they are not
+/// wanted), the rate of each draw; `values` (out, `rows` x `count` doubles, row by row: the draws of option i begin at number
+/// i x count); outputs may overlap no other argument; `error` (out, may be NULL).
 /// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP; HENCE_ERR_UTF8 with the byte
 /// and HENCE_ERR_SYNTAX with the character as index; HENCE_ERR_NOT_FINITE, HENCE_ERR_DOMAIN with the index of the offset or
 /// flow; HENCE_ERR_SHAPE without options or for another number of draws; HENCE_ERR_RANGE for a distribution, and for no

@@ -114,8 +114,8 @@ pub unsafe extern "C" fn hence_welfare_factors(
     unsafe { guard(error, body) }
 }
 
-/// What must be received later so that giving up an amount now leaves welfare as it was. For small amounts their ratio is
-/// the Ramsey rate's.
+/// What must be received later so that giving up an amount now leaves welfare as it was. For small amounts the
+/// rate of return between the two is the Ramsey rate.
 ///
 /// In cells: HENCE.COMPENSATION.
 ///
@@ -212,8 +212,8 @@ pub unsafe extern "C" fn hence_compensating_variation(
 }
 
 /// The consumption which, had everybody that much, would give the welfare of an unequal distribution:
-/// (sum of share x c^(1-eta))^(1/(1-eta)), the geometric mean at an elasticity eta of 1. Over the mean, it is 1 less
-/// Atkinson's index of inequality.
+/// (sum of share x c^(1-eta))^(1/(1-eta)), the geometric mean at an elasticity eta of 1. Divided by the
+/// mean it is 1 less Atkinson's index of inequality.
 ///
 /// In cells: HENCE.EQUIVALENT.
 ///

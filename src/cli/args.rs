@@ -5,6 +5,7 @@ use std::num::{NonZeroU64, NonZeroUsize};
 use std::path::PathBuf;
 
 use clap::{Args, CommandFactory, Parser, Subcommand, ValueEnum};
+use hence_workbook::planfile::{EXAMPLE, KEYS};
 
 /// Fills an appraisal workbook with discount factors and present values, and audits it.
 ///
@@ -60,6 +61,8 @@ pub enum Command {
     Schedules(Schedules),
     /// List the roles that a workbook's names declare, or suggest names for one that has none
     Names(Names),
+    /// Propose a plan file, which says what is where in workbooks without names
+    Plan(Plan),
     /// Write a ready-named appraisal workbook to type into
     Start(Start),
     /// Print the manual page
@@ -434,6 +437,26 @@ pub struct Names {
     pub document: Document,
     #[command(flatten)]
     pub overwrite: Overwrite,
+}
+
+#[derive(Debug, Args)]
+#[command(
+    after_help = "The years, flows, factors and results that headings and shapes show stand in the plan with the \
+                  reason; what was not found is a line to fill in.",
+    after_long_help = format!("A plan:\n\n{}\nIts keys:\n\n{}", indented(EXAMPLE), indented(KEYS))
+)]
+pub struct Plan {
+    #[command(flatten)]
+    pub source: Source,
+    /// The plan to write (.toml); else it is printed
+    #[arg(long, value_name = "FILE")]
+    pub out: Option<PathBuf>,
+    #[command(flatten)]
+    pub overwrite: Overwrite,
+}
+
+fn indented(text: &str) -> String {
+    text.lines().map(|line| format!("  {line}\n")).collect()
 }
 
 #[derive(Debug, Args)]

@@ -106,6 +106,7 @@ fn run(cli: &Cli, terminal: &Terminal) -> Result<Outcome, Failure> {
         Command::Rate(rate) => commands::rate::run(rate, terminal),
         Command::Schedules(schedules) => commands::schedules::run(schedules, &cli.schedules),
         Command::Names(names) => commands::names::run(names, terminal),
+        Command::Plan(plan) => commands::plan::run(plan, terminal),
         Command::Start(start) => commands::start::run(start, terminal),
         Command::Man => printed(&manual::manual()?),
         Command::Completions { shell } => {

@@ -5,7 +5,7 @@ use hence_core::{PriceBasis, Timing};
 
 use crate::decide::Rule;
 use crate::problem::Problem;
-use crate::references::SheetRange;
+use crate::references::{Area, SheetRange};
 
 /// The direction in which the years run.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
@@ -35,7 +35,7 @@ pub enum Label {
 #[derive(Clone, Debug, PartialEq)]
 pub struct Axis {
     /// The cells.
-    pub at: SheetRange,
+    pub at: Area,
     /// Which way they run.
     pub direction: Direction,
     /// One label a cell, in order.
@@ -92,7 +92,7 @@ pub struct Stream {
     /// The defined name (or block and row) it was found by.
     pub from: String,
     /// Its cells, as many as the years and in their direction.
-    pub at: SheetRange,
+    pub at: Area,
     /// The numbers in the cells; a blank is 0.
     pub raw: Vec<f64>,
     /// What multiplies every flow: +1 or -1, from `signs`.
@@ -146,7 +146,7 @@ pub struct Welfare {
 #[derive(Clone, Debug, PartialEq)]
 pub struct Consumption {
     /// Its cells.
-    pub at: SheetRange,
+    pub at: Area,
     /// The defined name it was found by.
     pub from: String,
     /// The numbers in the cells, above 0.
@@ -185,7 +185,7 @@ pub struct Effect {
     /// Its name.
     pub name: String,
     /// Its cells.
-    pub at: SheetRange,
+    pub at: Area,
     /// Its quantities.
     pub raw: Vec<f64>,
 }
@@ -249,7 +249,7 @@ pub struct Target {
     /// The defined name it was found by.
     pub from: String,
     /// Its cells.
-    pub at: SheetRange,
+    pub at: Area,
     /// What each cell holds now, in order.
     pub held: Vec<Held>,
     /// Each cell's number format code, where it has one ("0.0000"); for the tolerance of totals.
@@ -287,7 +287,7 @@ pub struct Choice {
 #[derive(Clone, Debug, PartialEq)]
 pub struct Covered {
     /// The cells, as long as the years.
-    pub at: SheetRange,
+    pub at: Area,
     /// The text beside it.
     pub heading: String,
     /// Its roles in words ("cost: works"), or empty for "not valued".

@@ -124,9 +124,10 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         Some(plan) => plan.parts(&book)?.into_iter().map(Some).collect(),
         None => vec![None],
     };
-    let left = work::left_for(&parts, own::own_sheets(&book));
+    let own = own::own_sheets(&book);
+    let left = work::left_for(&parts, &own);
     let previous: Vec<own::OwnSheet> = left.iter().flatten().cloned().collect();
-    let run = Run { package, book: &book, request, catalogue, previous: &previous };
+    let run = Run { package, book: &book, request, catalogue, own: &own, previous: &previous };
     let mut works = begun(&run, &parts, &left)?;
     for work in &mut works {
         work.problems.splice(0..0, noticed.iter().cloned());
@@ -249,7 +250,7 @@ struct Built {
 
 /// Composes the sheets of every appraisal; the first one's summary gathers the verdicts of several.
 fn composed(works: &[Work]) -> Result<Built> {
-    let differs = differs();
+    let differs = differs(works.len() > 1 || works[0].name.is_some());
     let mut siblings: Vec<sheets::Sibling> = Vec::new();
     let mut all: Vec<Composed> = Vec::new();
     for work in works.iter().rev() {
@@ -348,10 +349,17 @@ fn in_sheet(error: WorkbookError, sheet: &str) -> WorkbookError {
 }
 
 /// What differs in the package by design, a sentence each, for the audit summary.
-fn differs() -> Vec<String> {
+fn differs(several: bool) -> Vec<String> {
+    let names = match several {
+        false => "the names hence_verdict, hence_own and hence_digest",
+        true => {
+            "the names hence_verdict, one that begins so for each appraisal, hence_own, hence_digest and hence_appraisal"
+        }
+    };
+    let sheets = format!("The sheet list, {names}, and cell formats appended for the new sheets.");
     [
         "Filled cells and hence's own sheets; every other cell is as it was.",
-        "The sheet list, the names hence_verdict, hence_own and hence_digest, and cell formats appended for the new sheets.",
+        &sheets,
         "The list of content types and the workbook's relationships; the calculation chain is removed.",
         "A record of this fill for later runs (the part hence/record.json), which spreadsheet programs pass over.",
         "The workbook is marked to be calculated when it is opened.",

@@ -13,7 +13,7 @@ use crate::package::{Changes, Package};
 use crate::patch::{Cached, CellWrite, patch_sheet};
 use crate::plan::Stale;
 use crate::problem::{Place, Problem, Result};
-use crate::references::{Cell, SheetRange};
+use crate::references::{Area, Cell, SheetRange};
 use crate::sheets::TargetCell;
 use crate::stale;
 
@@ -27,17 +27,21 @@ pub fn any(stale: &Stale, at: &SheetRange) -> bool {
     cells.is_some_and(|cells| cells.range(first..=last).any(|&cell| at.range.contains(cell)))
 }
 
+/// Whether one of the cells along a row or column follows.
+fn any_along(stale: &Stale, at: &Area) -> bool {
+    at.pieces().any(|piece| any(stale, &piece))
+}
+
 /// Marks the rows of the coverage that follow, and warns of flows that do.
 pub fn mark(appraisal: &mut Appraisal, stale: &Stale, written: &[SheetRange], problems: &mut Vec<Problem>) {
     for row in &mut appraisal.coverage {
-        let filled =
-            |cell: &SheetRange| cell.sheet == row.at.sheet && row.at.range.contains(cell.range.first);
-        row.follows |= written.iter().any(filled) || any(stale, &row.at);
+        let filled = |cell: &SheetRange| row.at.contains(&cell.sheet, cell.range.first);
+        row.follows |= written.iter().any(filled) || any_along(stale, &row.at);
     }
     let mut seen = BTreeSet::new();
     for stream in appraisal.choices.iter().flat_map(|choice| &choice.streams) {
-        if any(stale, &stream.at) && seen.insert(stream.at.clone()) {
-            let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+        if any_along(stale, &stream.at) && seen.insert(stream.at.clone()) {
+            let place = Place::area(&stream.at).called(&stream.from);
             let message =
                 "its formulas depend, or may depend, on cells that are filled: it was valued as it stood";
             problems.push(Problem::warning("flow-follows", place, message).hint(
@@ -53,12 +57,12 @@ pub fn unknown(appraisal: &Appraisal, stale: &Stale, cells: &[TargetCell]) -> Ve
     let kept = cells.iter().filter(|cell| cell.awaits).map(|cell| &cell.at);
     let flows = appraisal.choices.iter().flat_map(|choice| &choice.streams).map(|stream| &stream.at);
     let years = appraisal.axes.iter().map(|axis| &axis.at);
+    let paths = appraisal.choices.iter().filter_map(|choice| choice.welfare.consumption.as_ref());
+    let along = flows.chain(years).chain(paths.map(|path| &path.at)).flat_map(Area::pieces);
     let settings = appraisal.settings.iter().map(|setting| &setting.at);
     let levels = appraisal.choices.iter().filter_map(|choice| choice.prices.levels.as_ref()?.at.as_ref());
-    let paths = appraisal.choices.iter().filter_map(|choice| choice.welfare.consumption.as_ref());
-    let paths = paths.map(|path| &path.at);
-    let follow = flows.chain(years).chain(settings).chain(levels).chain(paths).filter(|at| any(stale, at));
-    kept.chain(follow).cloned().collect()
+    let follow = along.chain(settings.chain(levels).cloned()).filter(|at| any(stale, at));
+    kept.cloned().chain(follow).collect()
 }
 
 /// Drops the stored result of everything that rests on unknown cells, on hence's own sheets and elsewhere.

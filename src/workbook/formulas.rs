@@ -7,7 +7,7 @@ use crate::appraisal::{Appraisal, Choice, Direction, Held, Stream, StreamKind, T
 use crate::layout::{Column, Layout};
 use crate::outcome::ChoiceOutcome;
 use crate::patch::{Cached, CellWrite};
-use crate::references::{Cell, Range, SheetRange, quote_sheet};
+use crate::references::{Area, Cell, Range, SheetRange, quote_sheet};
 use crate::writer::MAX_FORMULA;
 
 /// Relative difference up to which two factors are the same.
@@ -29,6 +29,30 @@ pub fn absolute(range: Range) -> String {
 /// Cells as a formula on sheet `home` refers to them: absolute, the sheet named unless it is `home`.
 pub fn refer(home: &str, at: &SheetRange) -> String {
     format!("{}{}", prefix(home, &at.sheet), absolute(at.range))
+}
+
+/// An area as arguments of a function: its pieces between commas.
+pub fn refer_area(home: &str, at: &Area) -> String {
+    at.pieces().map(|piece| refer(home, &piece)).collect::<Vec<_>>().join(",")
+}
+
+/// Cells from one place along the years, unbroken in every area that a term is about.
+struct Piece {
+    from: usize,
+    count: usize,
+}
+
+impl Piece {
+    fn of(&self, home: &str, at: &Area) -> String {
+        refer(home, &at.slice(self.from, self.count))
+    }
+}
+
+/// The sum of a term over the pieces of areas along the years; in brackets where there are several.
+fn in_pieces(areas: &[&Area], term: impl Fn(&Piece) -> String) -> String {
+    let terms: Vec<String> =
+        Area::unbroken(areas).into_iter().map(|(from, count)| term(&Piece { from, count })).collect();
+    if terms.len() == 1 { terms.concat() } else { format!("({})", terms.join("+")) }
 }
 
 /// One cell as a formula on sheet `home` refers to it, relative.
@@ -113,7 +137,7 @@ pub fn analyst_factors<'a>(
     outcomes: &[ChoiceOutcome],
     choice: usize,
     stream: Option<usize>,
-) -> Option<&'a SheetRange> {
+) -> Option<&'a Area> {
     let own = format!("INDEX({}!", quote_sheet(&layout.names.discounting));
     let factors = stream.map_or(&outcomes[choice].factors[..], |s| outcomes[choice].factors_of(s));
     // A stream on its option's basis uses its option's factors.
@@ -150,28 +174,35 @@ pub fn pv_expression(
     let flows = &appraisal.choices[choice].streams[stream];
     let axis = &appraisal.axes[appraisal.choices[choice].axis];
     let labels = refer(home, &layout.labels(choice));
-    let block = refer(home, &layout.stream_factors(choice, stream));
-    let cells = refer(home, &flows.at);
+    let block = layout.stream_factors(choice, stream);
     let factors = analyst_factors(appraisal, layout, outcomes, choice, Some(stream));
-    let years = refer(home, &axis.at);
-    let multipliers = layout.multipliers(choice, stream).map(|at| refer(home, &at));
-    let product = match (factors.map(|at| refer(home, at)), axis.direction, &multipliers) {
-        (Some(at), _, None) => format!("SUMPRODUCT({cells},{at})"),
-        (Some(at), Direction::Down, Some(by)) => format!("SUMPRODUCT({cells},{at},{by})"),
-        (None, Direction::Down, None) => format!("SUMPRODUCT({cells},{block})"),
-        (None, Direction::Down, Some(by)) => format!("SUMPRODUCT({cells},{block},{by})"),
-        // A comparison of a column with a row is a table in both programs, without array entry.
-        (None, Direction::Across, None) => format!("SUMPRODUCT(({labels}={years})*{block}*{cells})"),
-        (None, Direction::Across, Some(by)) => format!("SUMPRODUCT(({labels}={years})*{block}*{by}*{cells})"),
-        (Some(at), Direction::Across, Some(by)) => {
-            format!("SUMPRODUCT(({labels}={years})*{by}*{cells}*{at})")
+    let multipliers = layout.multipliers(choice, stream);
+    let along: Vec<&Area> = [&flows.at, &axis.at].into_iter().chain(factors).collect();
+    let product = in_pieces(&along, |piece| {
+        let part = |at: &SheetRange| piece.of(home, &Area::from(at.clone()));
+        let (cells, years) = (piece.of(home, &flows.at), piece.of(home, &axis.at));
+        match (factors.map(|at| piece.of(home, at)), axis.direction, &multipliers) {
+            (Some(at), _, None) => format!("SUMPRODUCT({cells},{at})"),
+            (Some(at), Direction::Down, Some(by)) => format!("SUMPRODUCT({cells},{at},{})", part(by)),
+            (None, Direction::Down, None) => format!("SUMPRODUCT({cells},{})", part(&block)),
+            (None, Direction::Down, Some(by)) => format!("SUMPRODUCT({cells},{},{})", part(&block), part(by)),
+            // A comparison of a column with a row is a table in both programs, without array entry.
+            (None, Direction::Across, None) => {
+                format!("SUMPRODUCT(({labels}={years})*{}*{cells})", refer(home, &block))
+            }
+            (None, Direction::Across, Some(by)) => {
+                format!("SUMPRODUCT(({labels}={years})*{}*{}*{cells})", refer(home, &block), refer(home, by))
+            }
+            (Some(at), Direction::Across, Some(by)) => {
+                format!("SUMPRODUCT(({labels}={years})*{}*{cells}*{at})", refer(home, by))
+            }
         }
-    };
+    });
     let mut text = format!("{}{product}", scale(flows, home));
     let last = outcomes[choice].factors.len().saturating_sub(1);
     if let Some(residual) = residual(flows, home) {
-        let at = factors.map_or_else(|| layout.stream_factors(choice, stream), SheetRange::clone);
-        let cell = nth(at.range, last);
+        let at = factors.map_or_else(|| Area::from(block.clone()), Area::clone);
+        let cell = at.nth(last);
         text.push_str(&format!("{residual}*{}{}", prefix(home, &at.sheet), cell_text(cell, true, true)));
         text.push_str(&times_last(layout, choice, stream, home));
     }
@@ -193,13 +224,17 @@ pub fn sum_expression(
 ) -> String {
     let flows = &appraisal.choices[choice].streams[stream];
     let axis = &appraisal.axes[appraisal.choices[choice].axis];
-    let cells = refer(home, &flows.at);
     let sum = match (layout.multipliers(choice, stream), axis.direction) {
-        (None, _) => format!("SUM({cells})"),
-        (Some(by), Direction::Down) => format!("SUMPRODUCT({cells},{})", refer(home, &by)),
+        (None, _) => format!("SUM({})", refer_area(home, &flows.at)),
+        (Some(by), Direction::Down) => in_pieces(&[&flows.at], |piece| {
+            format!("SUMPRODUCT({},{})", piece.of(home, &flows.at), piece.of(home, &Area::from(by.clone())))
+        }),
         (Some(by), Direction::Across) => {
             let (labels, by) = (refer(home, &layout.labels(choice)), refer(home, &by));
-            format!("SUMPRODUCT(({labels}={})*{by}*{cells})", refer(home, &axis.at))
+            in_pieces(&[&flows.at, &axis.at], |piece| {
+                let (cells, years) = (piece.of(home, &flows.at), piece.of(home, &axis.at));
+                format!("SUMPRODUCT(({labels}={years})*{by}*{cells})")
+            })
         }
     };
     let total = format!("{}{sum}", scale(flows, home));
@@ -398,7 +433,7 @@ impl Maker<'_> {
     fn look_up(&self, column: &SheetRange, i: usize) -> String {
         let axis = &self.appraisal.axes[self.appraisal.choices[self.choice].axis];
         let across = axis.direction == Direction::Across;
-        let label = cell_text(nth(axis.at.range, i), !across, across);
+        let label = cell_text(axis.at.nth(i), !across, across);
         let labels = refer(self.home, &self.layout.labels(self.choice));
         let values = refer(self.home, column);
         format!("INDEX({values},MATCH({}{label},{labels},0))", prefix(self.home, &axis.at.sheet))
@@ -408,8 +443,8 @@ impl Maker<'_> {
     fn factor(&self, stream: Option<usize>, i: usize) -> String {
         match analyst_factors(self.appraisal, self.layout, self.outcomes, self.choice, stream) {
             Some(at) => {
-                let down = at.range.last.row > at.range.first.row;
-                format!("{}{}", prefix(self.home, &at.sheet), cell_text(nth(at.range, i), down, !down))
+                let down = at.is_column();
+                format!("{}{}", prefix(self.home, &at.sheet), cell_text(at.nth(i), down, !down))
             }
             None => {
                 let factors = stream.map_or_else(
@@ -426,7 +461,7 @@ impl Maker<'_> {
         let stream = &self.appraisal.choices[self.choice].streams[s];
         let by = self.layout.multipliers(self.choice, s).map(|at| self.look_up(&at, i));
         let by = by.map(|by| format!("*{by}")).unwrap_or_default();
-        let cell = format!("{}{}", prefix(self.home, &stream.at.sheet), nth(stream.at.range, i));
+        let cell = format!("{}{}", prefix(self.home, &stream.at.sheet), stream.at.nth(i));
         let text = format!("{}{cell}", scale(stream, self.home));
         let last = i + 1 == self.outcomes[self.choice].factors.len();
         match residual(stream, self.home).filter(|_| last) {

@@ -4,38 +4,12 @@
 //! workbook that is laid out alike. Roles are written as in names, without `hence_`:
 //!
 //! ```toml
-//! sheet = "Flows"                    # cells without a sheet are on this one
-//!
-//! [settings]                         # what the workbook states in no cell
-//! basis = "3.5% to 30, 3% after"
-//! timing = "flows middle, base start"
-//! uplift_works = "20%"
-//!
-//! [roles]                            # what it does: cells, a defined name, a table's column
-//! base = "Inputs!C3"
-//! years = "C5:Z5"
-//!
-//! [[option]]
-//! name = "Do minimum"
-//! roles.cost_repairs = "C8:Z8"
-//! roles.npv = "Summary!C4"
-//!
-//! [[option]]
-//! name = "New wall"
-//! roles.cost_works = "C12:Z12"
-//! roles.benefit_damage_avoided = "C13:Z13"
-//! roles.npv = "Summary!C5"
+#![doc = include_str!("planfile/example.toml")]
 //! ```
 //!
-//! | key | where | what |
-//! | --- | --- | --- |
-//! | `sheet` | anywhere | the sheet of cells that are given without one |
-//! | `sheets` | `[[option]]`, `[[appraisal]]` | sheets of one layout: a list of names and of patterns, in which `*` stands for any letters and `?` for one; the entries hold for each of them, which is an option (an appraisal) by its sheet's name |
-//! | `name` | `[[option]]`, `[[appraisal]]` | what it is called; else the name of its sheet |
-//! | `roles` | anywhere | a table of roles: cells (`Sheet1!C5:Z5`, `'My sheet'!C5:Z5`, `C5:Z5`), a defined name of the workbook, or a table's column (`Flows[Works]`) |
-//! | `settings` | anywhere | a table of roles with what they say, for what the workbook holds in no cell: numbers, texts, dates, lists of names |
-//! | `[[option]]` | the plan, `[[appraisal]]` | one of the alternatives compared |
-//! | `[[appraisal]]` | the plan | one of several appraisals in the workbook, with roles, settings and options of its own |
+//! ```text
+#![doc = include_str!("planfile/keys.txt")]
+//! ```
 //!
 //! An option's entry comes before its appraisal's, that before the plan's. What the command line says comes before the
 //! plan, the plan before the names of the workbook; where plan and workbook state another base, basis, timing or price
@@ -58,6 +32,11 @@ pub use apply::Part;
 pub(crate) use apply::{Planned, Says};
 use parse::Whole;
 pub use propose::{Proposal, propose};
+
+/// A plan, as an example.
+pub const EXAMPLE: &str = include_str!("planfile/example.toml");
+/// The keys of a plan, and what each is.
+pub const KEYS: &str = include_str!("planfile/keys.txt");
 
 /// The longest plan that is read, in bytes.
 const MAX_BYTES: u64 = 1 << 20;

@@ -5,7 +5,7 @@ use std::fmt;
 use serde::{Deserialize, Serialize};
 
 use crate::codes::CODES;
-use crate::references::{Range, SheetRange, quote_sheet};
+use crate::references::{Area, Range, SheetRange, quote_sheet};
 
 /// How bad a problem is.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
@@ -36,6 +36,11 @@ impl Place {
     /// Cells of a sheet.
     pub fn cells(sheet: &str, range: Range) -> Self {
         Place { sheet: Some(sheet.to_owned()), range: Some(range), ..Place::default() }
+    }
+
+    /// Cells along a row or column; the rectangle around them where they come in pieces.
+    pub fn area(at: &Area) -> Self {
+        Place::cells(&at.sheet, at.hull().range)
     }
 
     /// A defined name, where it has no cells to point at.
@@ -70,9 +75,6 @@ impl Place {
 
 impl fmt::Display for Place {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        if let Some(line) = self.line {
-            return write!(f, "line {line}");
-        }
         match (&self.sheet, self.range, &self.name) {
             (Some(sheet), Some(range), name) => {
                 write!(f, "{}!{range}", quote_sheet(sheet))?;
@@ -83,12 +85,15 @@ impl fmt::Display for Place {
                 name.as_ref().map_or(Ok(()), |name| write!(f, " [{name}]"))
             }
             (None, _, Some(name)) => write!(f, "[{name}]"),
-            (None, _, None) => write!(f, "workbook"),
+            (None, _, None) => match self.line {
+                Some(line) => write!(f, "line {line}"),
+                None => write!(f, "workbook"),
+            },
         }
     }
 }
 
-/// One problem. Codes are short stable kebab words, listed in [`CODES`](crate::codes::CODES).
+/// One problem. Codes are short stable kebab words, listed in [`CODES`].
 #[derive(Clone, Debug, PartialEq, Eq, Hash, Serialize)]
 pub struct Problem {
     /// The stable word.
@@ -155,9 +160,9 @@ pub struct WorkbookError {
     problems: Vec<Problem>,
 }
 
-/// Codes of problems that are about files and places, not about what a workbook holds.
-const FILE_CODES: [&str; 5] =
-    ["cannot-read", "cannot-write", "output-changed", "output-exists", "output-is-input"];
+/// Codes of problems that are about files and places, or about what is asked for, not about what a workbook holds.
+const FILE_CODES: [&str; 6] =
+    ["cannot-read", "cannot-write", "output-changed", "output-exists", "output-is-input", "plan-appraisal"];
 
 /// The result of a fallible function of this crate.
 pub type Result<T> = std::result::Result<T, WorkbookError>;

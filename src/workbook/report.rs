@@ -115,6 +115,14 @@ pub struct OptionReport {
 }
 
 impl OptionReport {
+    /// Its name, after that of its appraisal where the workbook has several.
+    pub fn called(&self) -> String {
+        match &self.appraisal {
+            Some(appraisal) if *appraisal != self.name => format!("{appraisal}: {}", self.name),
+            _ => self.name.clone(),
+        }
+    }
+
     /// The totals that rank, ratio and NPV use.
     pub fn totals(&self) -> &Totals {
         self.increment.as_ref().unwrap_or(&self.absolute)

@@ -10,7 +10,7 @@ use crate::model::{SheetKind, Workbook};
 use crate::package::Package;
 use crate::problem::Result;
 use crate::reading::{Sheets, Value};
-use crate::references::{Cell, Range, SheetRange};
+use crate::references::{Cell, NameTarget, Range, SheetRange};
 use crate::resolve::sum_of;
 use crate::roles::{self, Role, Way, key};
 use runs::Run;
@@ -92,12 +92,21 @@ fn already(book: &Workbook) -> (BTreeSet<String>, Vec<SheetRange>, BTreeSet<Stri
     for defined in &book.names {
         let Some(Ok(name)) = roles::parse_name(&defined.name) else { continue };
         known.insert(key(&defined.name));
-        if let crate::references::NameTarget::Cells(at) = book.resolve(defined) {
-            if name.role.info().way == Way::Own {
-                own.insert(at.sheet);
-            } else {
-                cells.push(at);
+        let at = match book.resolve(defined) {
+            NameTarget::Cells(at) => vec![at],
+            NameTarget::Union(pieces) => pieces,
+            NameTarget::Table { table, part } => {
+                let table = book.find_table(&table);
+                let part = table
+                    .and_then(|t| Some(SheetRange::new(&book.sheets[t.sheet].name, t.cells(&part, None)?)));
+                part.into_iter().collect()
             }
+            _ => Vec::new(),
+        };
+        if name.role.info().way == Way::Own {
+            own.extend(at.into_iter().map(|at| at.sheet));
+        } else {
+            cells.extend(at);
         }
     }
     (known, cells, own)

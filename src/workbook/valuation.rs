@@ -14,7 +14,7 @@ use crate::measuring::{Further, Moments, measure_gross, measure_net, measure_uni
 use crate::outcome::{ChoiceOutcome, OwnBasis, StreamOutcome, Totals};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 use crate::ranking::Worth;
-use crate::references::{Cell, Range, SheetRange};
+use crate::references::{Area, Range, SheetRange};
 use crate::welfare;
 
 /// Values every option; all problems are reported together.
@@ -102,16 +102,8 @@ pub(crate) fn from_core(error: &hence_core::Error, place: Place) -> Problem {
 }
 
 /// The cell of the axis' (or a stream's) entry `index`.
-pub(crate) fn cell_of(at: &SheetRange, index: usize) -> SheetRange {
-    let first = at.range.first;
-    let across = at.range.last.row == first.row;
-    let step = index as u32;
-    let cell = if across {
-        Cell { row: first.row, col: first.col + step }
-    } else {
-        Cell { row: first.row + step, col: first.col }
-    };
-    SheetRange { sheet: at.sheet.clone(), range: Range { first: cell, last: cell } }
+pub(crate) fn cell_of(at: &Area, index: usize) -> SheetRange {
+    SheetRange { sheet: at.sheet.clone(), range: Range::cell(at.nth(index)) }
 }
 
 /// Timing in force: the command line beats the cell, the cell the line, the line its schedule; a disagreement is a
@@ -328,7 +320,7 @@ fn value_stream(
         let amount = residual.value * stream.unit * multiplier(last);
         flows[last] += if stream.kind == StreamKind::Cost { -amount } else { amount };
     }
-    let place = || Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+    let place = || Place::area(&stream.at).called(&stream.from);
     if !flows.iter().all(|x| x.is_finite()) {
         return Err(too_large(place(), "a flow").into());
     }

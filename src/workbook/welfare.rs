@@ -88,7 +88,7 @@ fn exact_value(
     path: &Consumption,
 ) -> Result<ExactValue> {
     let (choice, outcome) = (&appraisal.choices[c], &outcomes[c]);
-    let place = || cells(&path.at, &path.from);
+    let place = || Place::area(&path.at).called(&path.from);
     let refuse =
         |code, message: &str, hint: &str| Err(Problem::error(code, place(), message).hint(hint).into());
     let baseline = appraisal.baseline.map(|b| (&appraisal.choices[b], &outcomes[b]));
@@ -166,7 +166,7 @@ fn not_marginal(choice: &Choice, path: &Consumption, value: &ExactValue) -> Opti
     if off.is_some_and(|off| off.abs() <= MARGINAL) {
         return None;
     }
-    let place = cells(&path.at, &path.from);
+    let place = Place::area(&path.at).called(&path.from);
     let message = match off {
         Some(off) => format!(
             "`{}` is not small against consumption: the marginal method values its flows at {}, which is {:.1}% {} the \

@@ -11,6 +11,7 @@ mod fill;
 mod help;
 mod names;
 mod outputs;
+mod plan;
 mod rate;
 mod readme;
 mod schedules;

@@ -2,7 +2,15 @@
 
 mod plan;
 
+use std::path::Path;
+
+use hence_core::Catalogue;
+use hence_workbook::check::{CheckRequest, check};
+use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::findings::Kind;
+use hence_workbook::package::Package;
+
+use crate::small::Small;
 use plan::{Plan, Shows, UK, banded, codes, flat, rounded, show, uk};
 
 #[track_caller]
@@ -32,6 +40,48 @@ fn right_factors_give_no_finding() {
         assert_eq!(Plan::new(line, 80, mixture).shows(shows).codes(), [""; 0]);
         let ramsey = Plan::new("preference 1%, elasticity 1.5, growth 2%", 50, flat(0.04));
         assert_eq!(ramsey.shows(shows).codes(), [""; 0]);
+    }
+}
+
+/// Cells of columns E and F, shown as `#,##0.00` and rounded to that where so wanted.
+fn shown_to_pennies(plan: &Plan, round: bool) -> String {
+    let cell = |x: f64| if round { rounded(x, 2) } else { x };
+    let row = |(i, d): (usize, &f64)| {
+        let (cost, benefit) = Plan::flows(i);
+        format!("E{}: {{3}}{} | {{3}}{}\n", 10 + i, cell(cost * d), cell(benefit * d))
+    };
+    plan.factors.iter().enumerate().map(row).collect()
+}
+
+#[test]
+fn digits_that_are_shown_or_typed_are_no_mistake() {
+    let plan = |factor: &dyn Fn(f64) -> f64| Plan::new(UK, 100, factor);
+    // Typed with the fifteen digits that a spreadsheet program shows.
+    let typed = |t: f64| -> f64 { format!("{:.14e}", uk(t)).parse().unwrap() };
+    assert_eq!(plan(&typed).codes(), [""; 0]);
+    for round in [true, false] {
+        let right = plan(&uk).shows(Shows::Present);
+        let cells = shown_to_pennies(&right, round);
+        assert_eq!(right.with(&cells, "").codes(), [""; 0]);
+        // A mistake shows through the digits.
+        let wrong = plan(&flat(0.035)).shows(Shows::Present);
+        let cells = shown_to_pennies(&wrong, round);
+        wrong.with(&cells, "").only(Kind::FlatForBands);
+    }
+}
+
+#[test]
+fn filled_samples_have_no_finding() {
+    for sample in ["mine-drainage.xlsx", "mine-drainage-libreoffice.xlsx"] {
+        let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("../../samples").join(sample);
+        let package = Package::open(&path).expect("the sample opens");
+        let catalogue = Catalogue::builtin();
+        for formulas in [true, false] {
+            let filled = fill(&package, &FillRequest { formulas, ..FillRequest::default() }, &catalogue);
+            let filled = Package::from_bytes(sample, filled.expect("it is filled").bytes).unwrap();
+            let report = check(&filled, &CheckRequest::default(), &catalogue).expect("it is checked");
+            assert_eq!((codes(&report), report.agree), (vec![], 1628), "{sample}");
+        }
     }
 }
 
@@ -339,4 +389,63 @@ fn a_row_of_factors_without_a_name() {
     for shows in [Shows::Present, Shows::Npv] {
         assert_eq!(Plan::new(UK, 60, uk).shows(shows).with(&row(&flat(0.07)), "").codes(), [""; 0]);
     }
+}
+
+#[test]
+fn a_formula_is_part_of_the_evidence() {
+    // NPV() discounts the first flow, too: a year too much.
+    let plan = Plan::new("5%", 40, |t| flat(0.05)(t + 1.0)).shows(Shows::Npv);
+    let net = Plan::npv(&plan.factors);
+    let finding = plan.with(&format!("B4: =NPV(0.05,G10:G50)>{net}"), "").only(Kind::OffByPeriod);
+    assert!(finding.words.contains("=NPV(0.05,G10:G50)"), "{}", show(&finding));
+    assert!(finding.words.contains("a whole year later"), "{}", show(&finding));
+}
+
+/// Two options of 41 years against a baseline: Dams cost 900 now and gain 50 a year; Dunes cost 150 and gain 20 a year,
+/// and from year 31 on 60.
+fn options(factor: impl Fn(f64) -> f64) -> Small {
+    let years = 0..=40;
+    let mut small = Small::default();
+    for (name, first, gain) in [
+        ("Nothing", 0.0, &(|_| 0.0) as &dyn Fn(usize) -> f64),
+        ("Dams", 900.0, &|_| 50.0),
+        ("Dunes", 150.0, &|i| if i > 30 { 60.0 } else { 20.0 }),
+    ] {
+        let (mut cells, mut npv) = (String::new(), 0.0);
+        for i in years.clone() {
+            let (cost, benefit) = if i == 0 { (first, 0.0) } else { (1.0, gain(i)) };
+            let d = factor(i as f64);
+            npv += (benefit - cost) * d;
+            cells.push_str(&format!("A{}: {} | {cost} | {benefit} | {d}\n", 10 + i, 2026 + i));
+        }
+        // Over the baseline, which costs 1 a year.
+        let nothing: f64 = years.clone().skip(1).map(|i| -factor(i as f64)).sum();
+        let cells =
+            format!("B1: 2026\nB2: '3.5% to 30, 0.5% after\nB3: 'Nothing\nB4: {}\n{cells}", npv - nothing);
+        small = small.sheet(name, &cells).own_names(
+            "hence_base B1, hence_basis B2, hence_years A10:A50, hence_cost_works B10:B50, \
+             hence_benefit_safety C10:C50, hence_factor D10:D50, hence_npv B4",
+        );
+    }
+    small.names("hence_baseline B3")
+}
+
+#[test]
+fn the_ranking_of_options_over_a_baseline() {
+    let right = |t: f64| banded(&[(30.0, 0.035), (f64::INFINITY, 0.005)], t);
+    let clean = plan::checked(&options(right));
+    assert!(clean.findings.is_empty(), "{}", clean.findings.iter().map(show).collect::<Vec<_>>().join("\n"));
+    let report = plan::checked(&options(flat(0.035)));
+    let shown: Vec<String> = report.findings.iter().map(show).collect();
+    // One row of factors an option.
+    assert_eq!(codes(&report), ["flat-for-bands"; 3], "{}", shown.join("\n"));
+    let npv = |name: &str, factor: &dyn Fn(f64) -> f64| -> f64 {
+        let (first, gain): (f64, fn(i32) -> f64) =
+            if name == "Dams" { (900.0, |_| 50.0) } else { (150.0, |i| if i > 30 { 60.0 } else { 20.0 }) };
+        (1..=40).map(|i| gain(i) * factor(f64::from(i))).sum::<f64>() - first
+    };
+    let dunes = report.findings.iter().find(|f| f.place.sheet.as_deref() == Some("Dunes")).unwrap();
+    // Only this option's own factors: the baseline and its costs of 1 a year stay as declared.
+    let own: f64 = (1..=40).map(|i| f64::from(i)).map(|i| flat(0.035)(i) - right(i)).sum();
+    close(dunes.effect_on_npv.unwrap(), npv("Dunes", &flat(0.035)) - npv("Dunes", &right) - own);
 }

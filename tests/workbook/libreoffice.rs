@@ -58,7 +58,7 @@ fn apart(before: &Stored, after: &Stored) -> Option<String> {
 }
 
 /// Every formula's result in `before` against the one in `after`; how many were compared, and what differs.
-fn compare(before: &Cells, after: &Cells) -> (usize, Vec<String>) {
+pub fn compare(before: &Cells, after: &Cells) -> (usize, Vec<String>) {
     let mut compared = 0;
     let mut wrong = Vec::new();
     for ((sheet, cell), old) in before.iter().filter(|(_, c)| c.formula && c.value != Stored::Nothing) {
@@ -122,7 +122,7 @@ fn output(name: &str) -> &'static [u8] {
 }
 
 /// What `hence check` says: differences, or the problems that keep it from valuing; nothing where all agrees.
-fn found(bytes: &[u8]) -> Vec<String> {
+pub fn found(bytes: &[u8]) -> Vec<String> {
     match check(&package(bytes), &CheckRequest::default(), &catalogue()) {
         Ok(report) if report.agrees() => Vec::new(),
         Ok(report) => report.differences.iter().map(|d| format!("{} {}", d.place, d.role)).collect(),

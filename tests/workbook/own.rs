@@ -68,6 +68,37 @@ fn refused(bytes: &[u8]) -> Vec<(&'static str, String)> {
     error.problems().iter().map(|p| (p.code, p.place.sheet.clone().unwrap_or_default())).collect()
 }
 
+/// Holds a workbook that was filled again to differ only in what names its input: the hash, and what cells held before.
+pub fn only_the_input_differs(name: &str, first: &[u8], second: &[u8]) {
+    let (a, b) = (package(first), package(second));
+    assert!(a.parts().eq(b.parts()), "{name}: the same parts in the same order");
+    let differing: Vec<&str> = a.parts().filter(|p| a.part(p).unwrap() != b.part(p).unwrap()).collect();
+    // The summary holds the hash of its input, the changes what stood in the cells before; the digest of both sheets
+    // stands in the workbook part.
+    let mut allowed = vec![
+        "hence/record.json".to_owned(),
+        "xl/workbook.xml".to_owned(),
+        part(&a, SUMMARY),
+        part(&a, "Audit changes"),
+    ];
+    allowed.sort();
+    let mut found: Vec<String> = differing.iter().map(|part| (*part).to_owned()).collect();
+    found.sort();
+    assert_eq!(found, allowed, "{name}");
+    // In the workbook part only the digests.
+    let book = |package: &Package| {
+        let xml = String::from_utf8(package.part("xl/workbook.xml").unwrap().unwrap()).unwrap();
+        let names: Vec<String> = xml.split("<definedName ").map(str::to_owned).collect();
+        names.into_iter().filter(|name| !name.starts_with("name=\"hence_digest\"")).collect::<Vec<_>>()
+    };
+    assert_eq!(book(&a), book(&b), "{name}");
+    // On the summary only the hash.
+    let (x, y) = (texts(&cells(first), SUMMARY), texts(&cells(second), SUMMARY));
+    let apart: Vec<_> = x.iter().zip(&y).filter(|(x, y)| x != y).collect();
+    assert_eq!((x.len(), apart.len()), (y.len(), 1), "{name}: {apart:?}");
+    assert_eq!(apart[0].0.1.len(), 64, "{name}: {apart:?}");
+}
+
 #[test]
 fn a_second_fill_changes_nothing_but_what_names_its_input() {
     let sample = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("../../samples/mine-drainage.xlsx");
@@ -80,29 +111,8 @@ fn a_second_fill_changes_nothing_but_what_names_its_input() {
             assert!(first == filled(&input), "input {i}: one input gives one output");
         }
         let second = filled(&first);
-        let (a, b) = (package(&first), package(&second));
-        assert!(a.parts().eq(b.parts()), "input {i}: the same parts in the same order");
-        let differing: Vec<&str> = a.parts().filter(|p| a.part(p).unwrap() != b.part(p).unwrap()).collect();
-        // The summary and the record hold the hash of their input, the changes what stood in the cells before; the digest
-        // of both sheets stands in the workbook part.
-        let mut allowed = vec!["xl/workbook.xml".to_owned(), part(&a, SUMMARY), part(&a, "Audit changes")];
-        allowed.push("hence/record.json".to_owned());
-        allowed.sort();
-        let mut found: Vec<String> = differing.iter().map(|part| (*part).to_owned()).collect();
-        found.sort();
-        assert_eq!(found, allowed, "input {i}");
-        // In the workbook part only the digests.
-        let book = |package: &Package| {
-            let xml = String::from_utf8(package.part("xl/workbook.xml").unwrap().unwrap()).unwrap();
-            let names: Vec<String> = xml.split("<definedName ").map(str::to_owned).collect();
-            names.into_iter().filter(|name| !name.starts_with("name=\"hence_digest\"")).collect::<Vec<_>>()
-        };
-        assert_eq!(book(&a), book(&b), "input {i}");
-        // On the summary only the hash.
-        let (x, y) = (texts(&cells(&first), SUMMARY), texts(&cells(&second), SUMMARY));
-        let apart: Vec<_> = x.iter().zip(&y).filter(|(x, y)| x != y).collect();
-        assert_eq!((x.len(), apart.len()), (y.len(), 1), "input {i}: {apart:?}");
-        assert_eq!(apart[0].0.1.len(), 64, "input {i}: {apart:?}");
+        only_the_input_differs(&format!("input {i}"), &first, &second);
+        let b = package(&second);
         // A third fill has the same before and after as the second, so only the hash is new.
         let third = package(&filled(&second));
         let changes = part(&b, "Audit changes");

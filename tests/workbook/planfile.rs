@@ -2,20 +2,19 @@
 //!
 //! The workbooks are made up for these tests.
 
+mod proposed;
+mod several;
+
 use hence_core::Catalogue;
-use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::fill::{FillRequest, Filled, fill};
-use hence_workbook::model::Workbook;
 use hence_workbook::package::Package;
 use hence_workbook::planfile::PlanFile;
 use hence_workbook::problem::{Problem, WorkbookError};
-use hence_workbook::report::Status;
 use hence_workbook::resolve::Options;
 use hence_workbook::sheets::VERDICT_AGREES;
 
 use crate::libreoffice::cells::{Cells, Stored, cells};
-use crate::libreoffice::office::{Recalculate, saved, soffice};
-use crate::small::{Small, codes, lines};
+use crate::small::{Small, lines};
 
 const FLOWS: &str = "A1: 'Base | 2025
     A2: 'Rate | 0.035
@@ -60,18 +59,6 @@ fn number(cells: &Cells, sheet: &str, at: &str) -> f64 {
     match cells.get(&(sheet.to_owned(), at.parse().expect("a cell"))).map(|cell| &cell.value) {
         Some(Stored::Number(x)) => *x,
         other => panic!("{sheet}!{at} holds {other:?}"),
-    }
-}
-
-/// The value of the cell that a name of the workbook stands for.
-fn named(bytes: &[u8], name: &str) -> String {
-    let package = Package::from_bytes("book.xlsx", bytes.to_vec()).expect("a package");
-    let book = Workbook::read(&package).expect("a workbook");
-    let defined = book.find_name(name, None).unwrap_or_else(|| panic!("no name {name}"));
-    let hence_workbook::references::NameTarget::Cells(at) = book.resolve(defined) else { panic!("{name}") };
-    match cells(bytes).get(&(at.sheet, at.range.first)).map(|cell| cell.value.clone()) {
-        Some(Stored::Text(text)) => text,
-        other => panic!("{name} holds {other:?}"),
     }
 }
 
@@ -164,162 +151,6 @@ fn options_on_sheets_of_one_layout_and_in_blocks() {
     assert!((npv[1].1 - npv[0].1 - 60.0).abs() < 1e-9);
 }
 
-/// Two appraisals: sheets of one layout, each with its own base and rate.
-fn two() -> (Small, PlanFile) {
-    let one = |base: i32, rate: &str, works: i32| {
-        format!(
-            "A1: 'Base | {base}\nA2: 'Rate | {rate}\nA4: 'Year | {base} | {} | {}\nA5: 'Works | {works} | 50 | 25\n\
-             A6: 'Access | 10 | 60 | 90\nA8: 'Factor | | |\nA9: 'NPV |\nG1: 'Twice | =2*B9>0",
-            base + 1,
-            base + 2
-        )
-    };
-    let book = Small::default()
-        .sheet("North", &one(2025, "0.035", 100))
-        .sheet("South", &one(2030, "0.05", 40))
-        .sheet("Remarks", "A1: 'both sites");
-    let plan = parsed(
-        "[settings]\ntiming = \"flows end, base end\"\n\
-         [[appraisal]]\nsheets = [\"North\", \"South\"]\n\
-         [appraisal.roles]\nbase = \"B1\"\nbasis = \"B2\"\nyears = \"B4:D4\"\ncost_works = \"B5:D5\"\n\
-         benefit_access = \"B6:D6\"\nfactor = \"B8:D8\"\nnpv = \"B9\"\n",
-    );
-    (book, plan)
-}
-
-fn sheets(bytes: &[u8]) -> Vec<String> {
-    let package = Package::from_bytes("book.xlsx", bytes.to_vec()).expect("a package");
-    Workbook::read(&package).expect("a workbook").sheets.into_iter().map(|sheet| sheet.name).collect()
-}
-
-#[test]
-fn two_appraisals_are_filled_in_one_run_each_with_its_own_audit() {
-    let (book, plan) = two();
-    let made = filled(&book.bytes(), Some(&plan));
-    let read = cells(&made.bytes);
-    for (sheet, works, rate) in [("North", 100.0, 0.035), ("South", 40.0, 0.05f64)] {
-        let d = |t: i32| (1.0 + rate).powi(-t);
-        let npv = (10.0 - works) + 10.0 * d(1) + 65.0 * d(2);
-        assert!((number(&read, sheet, "B9") - npv).abs() < 1e-9, "{sheet}");
-        let name = format!("hence_verdict_{}", sheet.to_lowercase());
-        assert_eq!(named(&made.bytes, &name), VERDICT_AGREES);
-    }
-    assert_eq!(named(&made.bytes, "hence_verdict"), VERDICT_AGREES);
-    assert_eq!(made.report.verdict, VERDICT_AGREES);
-    let names: Vec<&str> = made.report.appraisals.iter().map(|part| part.name.as_str()).collect();
-    assert_eq!(names, ["North", "South"]);
-    let second = &made.report.options[1];
-    assert_eq!((second.name.as_str(), second.appraisal.as_deref()), ("South", Some("South")));
-    let own: Vec<String> = sheets(&made.bytes).split_off(3);
-    assert_eq!(
-        (own.len(), own[0].as_str(), own[8].as_str()),
-        (14, "Discounting North", "Audit summary South")
-    );
-    let report = check(
-        &Package::from_bytes("book.xlsx", made.bytes).unwrap(),
-        &CheckRequest { plan: Some(plan), ..CheckRequest::default() },
-        &Catalogue::builtin(),
-    );
-    let report = report.expect("a check");
-    assert_eq!((report.status(), report.agree), (Status::Done, 8));
-}
-
-#[test]
-fn a_second_fill_of_two_appraisals_gives_the_same_bytes_but_for_the_hashes() {
-    let (book, plan) = two();
-    let first = filled(&book.bytes(), Some(&plan)).bytes;
-    let second = filled(&first, Some(&plan)).bytes;
-    let third = filled(&second, Some(&plan)).bytes;
-    assert_eq!(sheets(&first), sheets(&second));
-    let open = |bytes: &[u8]| Package::from_bytes("book.xlsx", bytes.to_vec()).unwrap();
-    let (a, b, c) = (open(&first), open(&second), open(&third));
-    assert!(a.parts().eq(b.parts()));
-    let model = Workbook::read(&b).unwrap();
-    let part = |sheet: &str| model.sheets[model.sheet_index(sheet).unwrap()].part.clone();
-    let differing = |x: &Package, y: &Package| -> Vec<String> {
-        x.parts().filter(|p| x.part(p).unwrap() != y.part(p).unwrap()).map(str::to_owned).collect()
-    };
-    let mut allowed = vec!["hence/record.json".to_owned(), "xl/workbook.xml".to_owned()];
-    let summaries = ["Audit summary North", "Audit summary South"].map(part);
-    allowed.extend(summaries.clone());
-    allowed.extend(["Audit changes North", "Audit changes South"].map(part));
-    allowed.sort();
-    let mut found = differing(&a, &b);
-    found.sort();
-    assert_eq!(found, allowed);
-    // From the second on only the hash of the input is new.
-    let mut allowed = vec!["hence/record.json".to_owned(), "xl/workbook.xml".to_owned()];
-    allowed.extend(summaries);
-    allowed.sort();
-    let mut found = differing(&b, &c);
-    found.sort();
-    assert_eq!(found, allowed);
-}
-
-#[test]
-fn libreoffice_computes_what_two_appraisals_hold() {
-    let Some(office) = soffice() else { return };
-    let (book, plan) = two();
-    let made = filled(&book.bytes(), Some(&plan)).bytes;
-    // A flow that is changed afterwards turns its own verdict and that on both.
-    let package = Package::from_bytes("book.xlsx", made.clone()).unwrap();
-    let model = Workbook::read(&package).unwrap();
-    let part = model.sheets[1].part.clone();
-    let xml = String::from_utf8(package.part(&part).unwrap().unwrap()).unwrap();
-    let other = xml.replace("<c r=\"B5\"><v>40</v>", "<c r=\"B5\"><v>41</v>");
-    assert_ne!(xml, other);
-    let changes = hence_workbook::package::Changes {
-        replace: [(part, other.into_bytes())].into(),
-        ..Default::default()
-    };
-    let changed = package.write(&changes).unwrap();
-    let books = [("same.xlsx".to_owned(), made.clone()), ("turned.xlsx".to_owned(), changed)];
-    let computed = saved(&office, &books, Recalculate::All);
-    let (same, turned) = (&computed["same.xlsx"], &computed["turned.xlsx"]);
-    let (before, after) = (cells(&made), cells(same));
-    for (at, cell) in &before {
-        let now = after.get(at).map(|cell| &cell.value);
-        match (&cell.value, now) {
-            (Stored::Number(x), Some(Stored::Number(y))) => {
-                assert!((x - y).abs() <= 1e-9 * x.abs().max(1.0), "{at:?}: {x} {y}");
-            }
-            (Stored::Text(x), Some(Stored::Text(y))) => assert_eq!(x, y, "{at:?}"),
-            _ => {}
-        }
-    }
-    let (twice, once) = (number(&after, "South", "H1"), number(&after, "South", "B9"));
-    assert!((twice - 2.0 * once).abs() < 1e-9 && once > 1.0);
-    assert_eq!(named(turned, "hence_verdict_north"), VERDICT_AGREES);
-    assert!(named(turned, "hence_verdict_south").starts_with("differs: "));
-    assert_eq!(named(turned, "hence_verdict"), "differs: 1 of 2 appraisals, first South");
-}
-
-#[test]
-fn an_appraisal_that_is_not_filled_keeps_its_sheets() {
-    let (book, plan) = two();
-    let both = filled(&book.bytes(), Some(&plan)).bytes;
-    let north = filled(&both, Some(&plan.clone().only(Some("north".into()))));
-    assert_eq!(north.report.appraisals.len(), 1);
-    let mut names = sheets(&north.bytes);
-    assert_eq!(names.len(), 17);
-    names.sort();
-    let mut all = sheets(&both);
-    all.sort();
-    assert_eq!(names, all);
-    assert_eq!(named(&north.bytes, "hence_verdict_south"), VERDICT_AGREES);
-}
-
-#[test]
-fn two_appraisals_may_not_fill_one_cell() {
-    let (book, _) = two();
-    let plan = parsed(
-        "[roles]\nnpv = \"Remarks!B1\"\n[[appraisal]]\nsheets = [\"North\", \"South\"]\n[appraisal.roles]\nbase = \"B1\"\n\
-         basis = \"B2\"\nyears = \"B4:D4\"\ncost_works = \"B5:D5\"\n",
-    );
-    let error = try_filled(&book.bytes(), Some(&plan)).expect_err("a refusal");
-    assert_eq!(codes(error.problems()), ["target-overlap Remarks!B1 [shelf.toml line 2, npv]"]);
-}
-
 #[test]
 fn one_plan_serves_a_shelf_of_alike_workbooks() {
     let plan = parsed(PLAN);
@@ -366,21 +197,78 @@ fn the_command_line_comes_before_the_plan_and_the_plan_before_names() {
     assert!(read.problems.iter().any(|p| p.code == "basis-overridden"));
 }
 
+/// The workbook that `wrong.txt` is about.
+fn one_for_wrong_plans() -> Package {
+    let site = "A4: 'Year | 2025 | 2026 | 2027 | 2028\nA5: 'Works | 1 | 2 | 3 | 4\nA9: 'NPV |";
+    let book = Small::default()
+        .sheet("Flows", FLOWS)
+        .names("Works_row B5:E5")
+        .sheet("Notes", "A1: 'nothing")
+        .sheet("Site 1", site)
+        .sheet("Site 2", site)
+        .raw_name("Broken", "Flows!#REF!");
+    Package::from_bytes("book.xlsx", book.bytes()).expect("a package")
+}
+
 #[test]
-fn beside_appraisals_names_count_for_settings_alone() {
-    let (book, _) = two();
-    // Flows named for the whole workbook belong to neither appraisal; the timing to both.
-    let book = book.names("hence_cost_other B1:D1, hence_timing A2");
+fn wrong_plans_are_explained_by_line_and_cell() {
+    let text = include_str!("planfile/wrong.txt");
+    let package = one_for_wrong_plans();
+    let mut cases = 0;
+    let mut wrong = String::new();
+    for case in text.split("\n== ").skip(1) {
+        let (title, rest) = case.split_once('\n').expect("a title");
+        let (plan, due) = rest.split_once("\n--\n").expect("a plan and what is said of it");
+        let found = match PlanFile::parse("shelf.toml", plan) {
+            Ok(plan) => {
+                let request = FillRequest { plan: Some(plan), ..FillRequest::default() };
+                fill(&package, &request, &Catalogue::builtin()).expect_err(title)
+            }
+            Err(error) => error,
+        };
+        let told: String = found
+            .problems()
+            .iter()
+            .map(|p| format!("{p}\n  Try: {}\n", p.hint.as_deref().unwrap_or("-")))
+            .collect();
+        if told.trim() != due.trim() {
+            wrong.push_str(&format!("== {title}\n{plan}\n--\n{told}\n"));
+        }
+        cases += 1;
+    }
+    assert!(wrong.is_empty(), "otherwise:\n{wrong}");
+    assert!(cases >= 10, "{cases}");
+}
+
+#[test]
+fn cells_in_pieces_and_columns_of_tables_are_given_like_any_others() {
+    let flows =
+        "A4: 'Year | 2025 | 2026 | 'Sum | 2027 | 2028\nA5: 'Works | 100 | 50 | 150 | 25 | 5\nA9: 'NPV |";
+    let pieces = Small::default().sheet("Flows", flows);
     let plan = parsed(
-        "[[appraisal]]\nsheets = [\"North\", \"South\"]\n[appraisal.roles]\nbase = \"B1\"\nbasis = \"B2\"\nyears = \"B4:D4\"\n\
-         cost_works = \"B5:D5\"\nnpv = \"B9\"\n",
+        "sheet = \"Flows\"\n[settings]\nbase = 2025\nbasis = 0.035\n[roles]\nyears = \"B4:C4,E4:F4\"\n\
+         cost_works = \"B5:C5, Flows!E5:F5\"\nnpv = \"B9\"\n",
     );
-    let (package, model) = book.open();
-    let parts = plan.parts(&model).expect("two");
-    let options = Options { plan: Some(&parts[0]), ..Options::default() };
-    let error = hence_workbook::resolve::resolve(&package, &model, &options).expect_err("a blank timing");
-    assert_eq!(codes(error.problems()), ["blank-setting Remarks!A2 [hence_timing]"]);
-    let message = plan.part(&model).expect_err("a choice").to_string();
-    assert!(message.contains("2 appraisals: North, South"), "{message}");
-    assert!(plan.only(Some("South".into())).part(&model).is_ok());
+    let d = |t: i32| 1.035f64.powi(-t);
+    let npv = -100.0 - 50.0 * d(1) - 25.0 * d(2) - 5.0 * d(3);
+    let report = filled(&pieces.bytes(), Some(&plan)).report;
+    assert!((report.options[0].absolute.npv - npv).abs() < 1e-9);
+    assert_eq!(report.verdict, VERDICT_AGREES);
+
+    let table = "<table xmlns=\"http://schemas.openxmlformats.org/spreadsheetml/2006/main\" id=\"1\" name=\"Flows\" \
+                 displayName=\"Flows\" ref=\"A1:B5\"><autoFilter ref=\"A1:B5\"/><tableColumns count=\"2\">\
+                 <tableColumn id=\"1\" name=\"Year\"/><tableColumn id=\"2\" name=\"Works\"/></tableColumns></table>";
+    let down = Small::default()
+        .sheet(
+            "Site",
+            "A1: 'Year | 'Works\nA2: 2025 | 100\nA3: 2026 | 50\nA4: 2027 | 25\nA5: 2028 | 5\nD1: 'NPV |",
+        )
+        .after_cells("<tableParts count=\"1\"><tablePart r:id=\"rId1\"/></tableParts>")
+        .related("table", "tables/table1.xml", table);
+    let plan = parsed(
+        "[settings]\nbase = 2025\nbasis = 0.035\n[roles]\nyears = \"Flows[Year]\"\ncost_works = \"Flows[Works]\"\n\
+         npv = \"Site!E1\"\n",
+    );
+    let report = filled(&down.bytes(), Some(&plan)).report;
+    assert!((report.options[0].absolute.npv - npv).abs() < 1e-9);
 }

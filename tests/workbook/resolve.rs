@@ -342,7 +342,7 @@ fn blocks_hold_a_stream_a_row_and_subtotals_are_left_out_by_name() {
     );
     let read = small.resolved();
     let names: Vec<_> =
-        read.choices[0].streams.iter().map(|s| (s.name.as_str(), s.at.range.to_string())).collect();
+        read.choices[0].streams.iter().map(|s| (s.name.as_str(), s.at.cells_text())).collect();
     assert_eq!(
         names,
         [("Civil works", "B5:D5".to_owned()), ("Pumps", "B6:D6".to_owned()), ("Power", "B10:D10".to_owned())]
@@ -461,7 +461,7 @@ fn coverage_lists_every_numeric_row_with_its_role_or_none() {
     let rows: Vec<_> = read
         .coverage
         .iter()
-        .map(|row| (row.heading.as_str(), row.roles.join(","), row.total, row.at.range.to_string()))
+        .map(|row| (row.heading.as_str(), row.roles.join(","), row.total, row.at.cells_text()))
         .collect();
     assert_eq!(
         rows,

@@ -79,7 +79,7 @@ fn stream(
         name: name.into(),
         kind,
         from: "test".into(),
-        at: line(case, sheet, k),
+        at: line(case, sheet, k).into(),
         raw: (0..case.years).map(flow).collect(),
         sign: 1.0,
         unit: 1.0,
@@ -95,7 +95,7 @@ fn stream(
 fn target(role: TargetRole, at: SheetRange) -> Target {
     let n =
         ((at.range.last.row - at.range.first.row) + (at.range.last.col - at.range.first.col) + 1) as usize;
-    Target { role, from: "test".into(), at, held: vec![Held::Blank; n], formats: vec![None; n] }
+    Target { role, from: "test".into(), at: at.into(), held: vec![Held::Blank; n], formats: vec![None; n] }
 }
 
 /// An option on a sheet of its own: years in line 3, factors in line 4, streams from line 9 (from 0).
@@ -160,7 +160,8 @@ fn option(case: &Case, sheet: &str, axis: usize, strong: f64, full: bool) -> Cho
 
 pub fn appraisal(case: &Case) -> Appraisal {
     let names = ["Do nothing", "It's a liner"];
-    let axis = |s: &str| Axis { at: line(case, s, 3), direction: case.direction, labels: labels(case) };
+    let axis =
+        |s: &str| Axis { at: line(case, s, 3).into(), direction: case.direction, labels: labels(case) };
     let choices: Vec<Choice> =
         vec![option(case, names[0], 0, 1.0, false), option(case, names[1], 1, 2.5, true)];
     let coverage = choices

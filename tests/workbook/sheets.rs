@@ -8,7 +8,7 @@ use std::process::Command;
 use calamine::{Data, Reader, Xlsx, open_workbook};
 use hence_core::{Basis, Catalogue, Position, Timing, Where};
 use hence_workbook::appraisal::{Appraisal, Direction, Held, TargetRole};
-use hence_workbook::formulas::{nth, target_writes};
+use hence_workbook::formulas::target_writes;
 use hence_workbook::graft::Graft;
 use hence_workbook::layout::{LabelValue, Layout, label_value};
 use hence_workbook::outcome::ChoiceOutcome;
@@ -116,7 +116,7 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
         for (t, target) in choice.targets.iter().enumerate() {
             let writes = target_writes(&appraisal, &outcomes, &layout, c, target, true);
             for (index, write) in writes.iter().enumerate() {
-                let at = nth(target.at.range, index);
+                let at = target.at.nth(index);
                 let expected = match write {
                     CellWrite::Formula(_, Cached::Number(x)) | CellWrite::Number(x) => Some(*x),
                     _ => None,
@@ -195,7 +195,7 @@ fn analyst(audit: &Audit) -> Vec<Sheet> {
         sheet.number(0, 6, Style::Money, 12.0);
         let axis = &audit.appraisal.axes[choice.axis];
         for (i, label) in axis.labels.iter().enumerate() {
-            let cell = nth(axis.at.range, i);
+            let cell = axis.at.nth(i);
             match label_value(label, false) {
                 LabelValue::Number(x, date) => {
                     sheet.number(cell.row, cell.col, if date { Style::Date } else { Style::Exact }, x);
@@ -205,14 +205,14 @@ fn analyst(audit: &Audit) -> Vec<Sheet> {
         }
         for stream in &choice.streams {
             for (i, x) in stream.raw.iter().enumerate() {
-                let cell = nth(stream.at.range, i);
+                let cell = stream.at.nth(i);
                 sheet.number(cell.row, cell.col, Style::Money, *x);
             }
         }
         for target in &choice.targets {
             let writes = target_writes(&audit.appraisal, &audit.outcomes, &audit.layout, c, target, true);
             for (i, write) in writes.into_iter().enumerate() {
-                let Cell { row, col } = nth(target.at.range, i);
+                let Cell { row, col } = target.at.nth(i);
                 match write {
                     CellWrite::Formula(text, result) => sheet.formula(row, col, Style::Exact, text, result),
                     CellWrite::Number(x) => sheet.number(row, col, Style::Exact, x),
@@ -359,10 +359,10 @@ fn the_verdict_turns_when_a_cell_is_changed() {
     let case = case("3.5% to 30, 3% after", END, Labels::Years, Direction::Across, true);
     let audit = audit(&case);
     let choice = &audit.appraisal.choices[1];
-    let role = |role: TargetRole| choice.targets.iter().find(|t| t.role == role).unwrap().at.range.first;
-    let flow = nth(choice.streams[1].at.range, 20);
-    let factor = nth(choice.targets[0].at.range, 5);
-    let year = nth(audit.appraisal.axes[1].at.range, 30);
+    let role = |role: TargetRole| choice.targets.iter().find(|t| t.role == role).unwrap().at.nth(0);
+    let flow = choice.streams[1].at.nth(20);
+    let factor = choice.targets[0].at.nth(5);
+    let year = audit.appraisal.axes[1].at.nth(30);
     let changes: Vec<(&str, Cell, f64)> = vec![
         ("a flow", flow, 1.0),
         ("a factor", factor, 0.8),

@@ -63,6 +63,13 @@ fn a_typed_number_in_a_row_of_formulas() {
         plan.put(at(14, i), (factor(i) + 0.01).to_string());
         only(&plan, "hard-coded", cell);
     }
+    // The second of a chain, behind its opening value.
+    let mut plan = Plan::clean();
+    plan.put(at(14, 0), "1".into()).put(at(14, 1), "0.95".into());
+    for i in 2..YEARS {
+        plan.put(at(14, i), format!("={}/(1+$B$2)>{}", at(14, i - 1), 0.95 * factor(i - 1)));
+    }
+    only(&plan, "hard-coded", "Plan!C14 [hence_factor]");
 }
 
 #[test]

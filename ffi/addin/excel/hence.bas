@@ -493,8 +493,8 @@ Public Declare PtrSafe Function hence_welfare_factors Lib "hence64.xll" ( _
     ByRef factors As Double, _
     ByRef failure As hence_error) As Long
 
-' What must be received later so that giving up an amount now leaves welfare as it was. For small amounts
-' their ratio is the Ramsey rate's.
+' What must be received later so that giving up an amount now leaves welfare as it was. For small amounts the
+' rate of return between the two is the Ramsey rate.
 Public Declare PtrSafe Function hence_compensation Lib "hence64.xll" ( _
     ByVal amount As Double, _
     ByVal now As Double, _
@@ -534,8 +534,8 @@ Public Declare PtrSafe Function hence_compensating_variation Lib "hence64.xll" (
     ByRef failure As hence_error) As Long
 
 ' The consumption which, had everybody that much, would give the welfare of an unequal distribution: (sum of
-' share x c^(1-eta))^(1/(1-eta)), the geometric mean at an elasticity eta of 1. Over the mean, it is 1 less
-' Atkinson's index of inequality.
+' share x c^(1-eta))^(1/(1-eta)), the geometric mean at an elasticity eta of 1. Divided by the mean it is 1
+' less Atkinson's index of inequality.
 Public Declare PtrSafe Function hence_equally_distributed_equivalent Lib "hence64.xll" ( _
     ByRef consumption As Double, _
     ByRef shares As Double, _

@@ -52,7 +52,7 @@ pub fn run(args: &Brief, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
         question: args.question.clone(),
         against: super::against(&args.against, &catalogue)?,
         roles: super::roles(&args.roles)?,
-        plan: super::plan(&args.roles, Some(&args.of))?,
+        plan: super::planned(&args.roles, Some(&args.of))?,
         as_of: args.signature.as_of.clone(),
         by: args.signature.by.clone(),
     };

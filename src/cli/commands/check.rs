@@ -52,7 +52,7 @@ struct DifferenceOut {
 /// Exit 0 when nothing is wrong, 1 on any finding.
 pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    let (roles, plan) = (super::roles(&args.roles)?, super::plan(&args.roles, Some(&args.of))?);
+    let (roles, plan) = (super::roles(&args.roles)?, super::planned(&args.roles, Some(&args.of))?);
     let request = CheckRequest { roles, plan };
     let gathered = gather(&args.books, None)?;
     for line in skipped_words(&gathered.skipped) {
@@ -181,12 +181,17 @@ fn told(finding: &Finding) -> String {
     text.push_str(&format!("    {}\n", finding.words));
     text.push_str(&format!("    found {}; expected {}\n", finding.found, finding.expected));
     let effect = match finding.effect_on_npv {
-        Some(effect) if effect > 0.0 => format!("the NPV is {} too high", money(effect)),
-        Some(effect) if effect < 0.0 => format!("the NPV is {} too low", money(-effect)),
+        Some(effect) if effect > 0.0 => format!("the NPV is {} too high", amount(effect)),
+        Some(effect) if effect < 0.0 => format!("the NPV is {} too low", amount(-effect)),
         Some(_) => "the NPV stays as it is".to_owned(),
         None => "its effect on the NPV is not known".to_owned(),
     };
     let ranking = finding.ranking.as_ref().map(|ranking| format!("; {ranking}")).unwrap_or_default();
     text.push_str(&format!("    {effect}{ranking}; {:.0}% sure\n", 100.0 * finding.confidence));
     text
+}
+
+/// An amount as money; what money would show as nothing, by its first digits.
+fn amount(x: f64) -> String {
+    if x < 0.01 { format!("{x:.1e}") } else { money(x) }
 }

@@ -23,7 +23,7 @@ pub fn run(args: &Compare, schedules: &Option<PathBuf>, terminal: &Terminal) -> 
     let request = CompareRequest {
         against: super::against(&args.against, &catalogue)?,
         roles: super::roles(&args.roles)?,
-        plan: super::plan(&args.roles, Some(&args.of))?,
+        plan: super::planned(&args.roles, Some(&args.of))?,
         map,
     };
     let output = output(args)?;

@@ -23,7 +23,7 @@ pub fn run(args: &args::Draws, schedules: &Option<PathBuf>, terminal: &Terminal)
     let texts = [&args.preference, &args.hazard, &args.elasticity, &args.growth];
     let mut request = DrawsRequest {
         roles: super::roles(&args.roles)?,
-        plan: super::plan(&args.roles, Some(&args.of))?,
+        plan: super::planned(&args.roles, Some(&args.of))?,
         ..DrawsRequest::default()
     };
     for (quantity, text) in Quantity::ALL.into_iter().zip(texts) {

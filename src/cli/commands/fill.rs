@@ -105,7 +105,7 @@ fn request(args: &Fill, catalogue: &Catalogue) -> Result<FillRequest, Failure> {
         prices: args.prices.clone(),
         replace: args.replace.as_deref().map(|text| super::pair(text, "--replace", "OLD=NEW")).transpose()?,
         roles: super::roles(&args.roles)?,
-        plan: super::plan(&args.roles, None)?,
+        plan: super::planned(&args.roles, None)?,
         formulas: args.write == WriteWhat::Formulas,
         replace_formulas: args.replace_formulas,
         against: super::against(&args.against, catalogue)?,

@@ -7,6 +7,7 @@ pub mod curve;
 pub mod draws;
 pub mod fill;
 pub mod names;
+pub mod plan;
 pub mod rate;
 pub mod schedules;
 pub mod start;
@@ -52,7 +53,7 @@ pub fn roles(args: &Roles) -> Result<Vec<(String, String)>, Failure> {
 }
 
 /// The plan that `--plan` names, for all of its appraisals or for the one that is wanted.
-pub fn plan(args: &Roles, of: Option<&OfSeveral>) -> Result<Option<PlanFile>, Failure> {
+pub fn planned(args: &Roles, of: Option<&OfSeveral>) -> Result<Option<PlanFile>, Failure> {
     let Some(path) = &args.plan else { return Ok(None) };
     let plan = PlanFile::open(path).map_err(|error| {
         let lines = error.problems().iter().map(|problem| {

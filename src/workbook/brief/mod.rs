@@ -250,7 +250,7 @@ pub fn brief(package: &Package, request: &BriefRequest, catalogue: &Catalogue) -
 /// Marks rows that follow from cells which hence fills, as a fill does: they are results, and not flows left out.
 fn mark_results(appraisal: &mut Appraisal, package: &Package, book: &Workbook) -> Result<()> {
     let targets = appraisal.choices.iter().flat_map(|choice| &choice.targets);
-    let cells: Vec<SheetRange> = targets.map(|target| target.at.clone()).collect();
+    let cells: Vec<SheetRange> = targets.flat_map(|target| target.at.pieces()).collect();
     let dependents = dependents(package, book, &cells)?.cells;
     let follow: Stale =
         dependents.into_iter().map(|(sheet, cells)| (book.sheets[sheet].name.clone(), cells)).collect();

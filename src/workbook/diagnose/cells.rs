@@ -8,7 +8,7 @@ use crate::model::{SheetKind, Workbook};
 use crate::package::Package;
 use crate::problem::{Place, Result};
 use crate::reading::{Sheets, Value};
-use crate::references::{Cell, Range, SheetRange, shift};
+use crate::references::{Area, Cell, Range, shift};
 
 /// Sheets larger than this, unpacked, are not read: they hold data, not an appraisal.
 const LARGEST: u64 = 40 << 20;
@@ -117,10 +117,10 @@ impl Cells {
         self.names.iter().position(|known| known == name)
     }
 
-    /// The cells of a range by the place of its sheet, in order.
-    pub(crate) fn each(&self, at: &SheetRange) -> Vec<At> {
+    /// The cells of an area by the place of its sheet, in order.
+    pub(crate) fn each(&self, at: &Area) -> Vec<At> {
         let sheet = self.sheet(&at.sheet);
-        sheet.map_or_else(Vec::new, |sheet| at.range.cells().map(|cell| (sheet, cell)).collect())
+        sheet.map_or_else(Vec::new, |sheet| at.cells().map(|cell| (sheet, cell)).collect())
     }
 
     /// Cells for a report.

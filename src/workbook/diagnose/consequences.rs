@@ -63,12 +63,19 @@ impl<'s, 'a> Consequences<'s, 'a> {
         })
     }
 
-    /// Whether every total of present values that an option shows, one at least, follows from the factors: with all
-    /// digits, or as it is shown.
-    pub fn gives(&self, choice: usize, exactly: bool) -> bool {
-        let mut totals = self.totals(choice).peekable();
-        let within = |cell: &Compared| if exactly { 0.0 } else { cell.tolerance };
-        totals.peek().is_some() && totals.all(|cell| self.holds(cell, within(cell)))
+    /// The largest distance of the totals of present values that an option shows, one at least, from what follows from the
+    /// factors; none where one does not follow: with all digits, or as it is shown.
+    pub fn gives(&self, choice: usize, exactly: bool) -> Option<f64> {
+        let mut farthest = None;
+        for cell in self.totals(choice) {
+            let (away, value) = self.nearest(cell)?;
+            let tolerance = if exactly { 0.0 } else { cell.tolerance };
+            if away > tolerance.max(RELATIVE * value.abs()) {
+                return None;
+            }
+            farthest = Some(away.max(farthest.unwrap_or(0.0)));
+        }
+        farthest
     }
 
     /// Whether a cell that differs holds what follows from other cells of the workbook.
@@ -76,12 +83,21 @@ impl<'s, 'a> Consequences<'s, 'a> {
         self.holds(cell, cell.tolerance)
     }
 
+    /// The same with all digits.
+    pub fn gives_exactly(&self, cell: &Compared) -> bool {
+        self.holds(cell, 0.0)
+    }
+
     fn holds(&self, cell: &Compared, tolerance: f64) -> bool {
-        let Some(found) = self.seen.held(cell).number() else { return false };
-        let role = &self.seen.target(cell).role;
-        self.values(cell.choice, role, cell.index)
-            .into_iter()
-            .any(|value| (found - value).abs() <= tolerance.max(RELATIVE * value.abs()))
+        self.nearest(cell).is_some_and(|(away, value)| away <= tolerance.max(RELATIVE * value.abs()))
+    }
+
+    /// The value nearest to what a cell holds of those that it may have from others, and the distance.
+    fn nearest(&self, cell: &Compared) -> Option<(f64, f64)> {
+        let found = self.seen.held(cell).number()?;
+        let values = self.values(cell.choice, &self.seen.target(cell).role, cell.index);
+        let away = values.into_iter().map(|value| ((found - value).abs(), value));
+        away.min_by(|a, b| a.0.total_cmp(&b.0))
     }
 
     /// Whether anything before the totals of an option differs.

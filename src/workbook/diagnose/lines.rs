@@ -65,14 +65,14 @@ pub(super) fn lines(appraisal: &Appraisal, cells: &Cells) -> Vec<Line> {
         });
     };
     for axis in &appraisal.axes {
-        add(&axis.at, axis.direction);
+        add(&axis.at.hull(), axis.direction);
     }
     for choice in &appraisal.choices {
         let axis = &appraisal.axes[choice.axis];
         let targets = choice.targets.iter().map(|target| &target.at);
         for at in choice.streams.iter().map(|stream| &stream.at).chain(targets) {
-            if at.range.len() == axis.at.range.len() {
-                add(at, axis.direction);
+            if at.len() == axis.at.len() {
+                add(&at.hull(), axis.direction);
             }
         }
     }

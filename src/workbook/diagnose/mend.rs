@@ -291,7 +291,7 @@ fn effect(slip: &Slip, seen: &Seen) -> Option<Effect> {
         let outcome = &seen.outcomes[c];
         match slip {
             Slip::Years { at, wrong, held, right, texts, .. }
-                if seen.appraisal.axes[choice.axis].at == *at =>
+                if seen.appraisal.axes[choice.axis].at.hull() == *at =>
             {
                 // How a program counts with a text depends on the formula.
                 if *texts {
@@ -305,8 +305,10 @@ fn effect(slip: &Slip, seen: &Seen) -> Option<Effect> {
             }
             Slip::Costs { at, .. } => {
                 let streams = choice.streams.iter().zip(&outcome.streams);
-                added[c] +=
-                    streams.filter(|(s, _)| s.at == *at).map(|(_, valued)| 2.0 * valued.pv).sum::<f64>();
+                added[c] += streams
+                    .filter(|(s, _)| s.at.hull() == *at)
+                    .map(|(_, valued)| 2.0 * valued.pv)
+                    .sum::<f64>();
             }
             // A total that is named stands beside one of its parts, in the option of that.
             Slip::Total { at, kind, flows, .. } if seen.appraisal.axes[choice.axis].at.sheet == at.sheet => {

@@ -102,6 +102,11 @@ fn slips(look: &Look, line: &Line) -> Vec<Slip> {
                 let near = matches!((own, held), (Some(a), Some(b)) if (b - a).abs() <= 0.6 * a.abs());
                 (alike(b) + 1 >= stands.len() && near).then_some((b, 0.7))
             }
+            // In a row of factors or present values only the first may be an opening value.
+            (None, Some(b)) if at == first && end > first && is_result(look, &cells) => {
+                at += 1;
+                Some((b, 0.85))
+            }
             (Some(a), None) if end == last && at == last && alike(a) + 2 >= stands.len() => Some((a, 0.7)),
             _ => None,
         };
@@ -117,6 +122,12 @@ fn slips(look: &Look, line: &Line) -> Vec<Slip> {
         at = end + 1;
     }
     slips
+}
+
+/// Whether cells are the whole of a target.
+fn is_result(look: &Look, cells: &[At]) -> bool {
+    let choices = look.seen.appraisal.choices.iter();
+    choices.flat_map(|choice| &choice.targets).any(|target| look.cells.each(&target.at) == cells)
 }
 
 /// Whether a formula of a line draws on the cell before it.

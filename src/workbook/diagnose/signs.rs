@@ -49,7 +49,7 @@ fn whole(look: &Look, c: usize, s: usize) -> Option<Finding> {
     let effect = look.in_flows(&added);
     Some(Finding {
         kind: Kind::NegativeCost,
-        place: Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
+        place: Place::area(&stream.at).called(&stream.from),
         found: "positive in every year".to_owned(),
         expected: "negative, as hence_signs says of costs".to_owned(),
         effect_on_npv: effect.npv,
@@ -64,7 +64,7 @@ fn whole(look: &Look, c: usize, s: usize) -> Option<Finding> {
 fn single(look: &Look, c: usize, s: usize) -> Option<Finding> {
     let stream = &look.seen.appraisal.choices[c].streams[s];
     let (against, odd) = (turned(stream, 1.0), turned(stream, -1.0));
-    let line = line_of(&stream.at, &look.cells)?;
+    let line = line_of(&stream.at.hull(), &look.cells)?;
     let cells: Vec<_> = line.each().collect();
     // What one formula gives along the row may well pass through zero.
     let shape = |i: usize| look.cells.get(cells[i]).and_then(|content| content.shape.as_deref());
@@ -79,8 +79,13 @@ fn single(look: &Look, c: usize, s: usize) -> Option<Finding> {
     sizes.sort_by(f64::total_cmp);
     let usual = sizes[sizes.len() / 2];
     let size = |i: usize| stream.raw[i].abs();
-    let odd: Vec<usize> =
-        odd.into_iter().filter(|i| (usual / USUAL..=usual * USUAL).contains(&size(*i))).collect();
+    // In the last year a credit may be what is left over.
+    let (low, high) = (sizes[0] / 2.0, sizes[sizes.len() - 1] * 2.0);
+    let ordinary = |i: &usize| {
+        let in_row = (low..=high).contains(&size(*i)) && *i + 1 < stream.raw.len();
+        in_row || (usual / USUAL..=usual * USUAL).contains(&size(*i))
+    };
+    let odd: Vec<usize> = odd.into_iter().filter(ordinary).collect();
     let (first, last) = (*odd.first()?, *odd.last()?);
     let near = |i: usize| {
         let beside = against.iter().min_by_key(|j| j.abs_diff(i)).map_or(0.0, |j| size(*j));

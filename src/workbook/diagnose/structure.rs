@@ -2,31 +2,44 @@
 
 use std::collections::HashSet;
 
-use super::Seen;
 use super::calc::Slopes;
 use super::cells::Cells;
 use super::effect::Effect;
 use super::expr::At;
 use super::lines::{Line, lines};
+use super::{Compared, Seen};
 use super::{rows, signs, sums, totals, units, years};
 use crate::appraisal::{Choice, Held, Target, TargetRole};
 use crate::findings::Finding;
 use crate::problem::Result;
-use crate::references::SheetRange;
+use crate::references::Area;
 
 /// Every structural mistake of a workbook that could be read, in no particular order.
 ///
 /// **Errors**: those of reading cells.
 pub fn findings(seen: &Seen) -> Result<Vec<Finding>> {
     let look = Look::new(seen)?;
-    let mut found = years::findings(&look);
-    found.extend(rows::findings(&look));
-    found.extend(totals::findings(&look));
-    found.extend(sums::findings(&look, &found));
-    found.extend(signs::findings(&look));
-    found.extend(units::findings(&look));
-    found.iter_mut().for_each(|finding| call(finding, seen));
+    let mut found = by_formulas(&look);
+    found.extend(of_totals(&look, &found, |_| false));
     Ok(found)
+}
+
+/// Those that formulas, headings and flows show.
+pub(super) fn by_formulas(look: &Look) -> Vec<Finding> {
+    let mut found = years::findings(look);
+    found.extend(rows::findings(look));
+    found.extend(totals::findings(look));
+    found.extend(signs::findings(look));
+    found.extend(units::findings(look));
+    found.iter_mut().for_each(|finding| call(finding, look.seen));
+    found
+}
+
+/// Mistakes that the numbers of totals show, besides those `told`; totals that follow from other numbers are left out.
+pub(super) fn of_totals(look: &Look, told: &[Finding], follows: impl Fn(&Compared) -> bool) -> Vec<Finding> {
+    let mut found = sums::findings(look, told, follows);
+    found.iter_mut().for_each(|finding| call(finding, look.seen));
+    found
 }
 
 /// Adds the name that the cells of a finding go by.
@@ -35,9 +48,7 @@ fn call(finding: &mut Finding, seen: &Seen) {
     else {
         return;
     };
-    let inside = |at: &SheetRange| {
-        at.sheet == *sheet && at.range.contains(range.first) && at.range.contains(range.last)
-    };
+    let inside = |at: &Area| at.contains(sheet, range.first) && at.contains(sheet, range.last);
     let choices = || seen.appraisal.choices.iter();
     let streams = choices().flat_map(|choice| &choice.streams).map(|stream| (&stream.at, &stream.from));
     let targets = choices().flat_map(|choice| &choice.targets).map(|target| (&target.at, &target.from));
@@ -56,7 +67,8 @@ pub(super) struct Look<'s, 'p> {
 }
 
 impl<'s, 'p> Look<'s, 'p> {
-    fn new(seen: &'s Seen<'p>) -> Result<Self> {
+    /// **Errors**: those of reading cells.
+    pub(super) fn new(seen: &'s Seen<'p>) -> Result<Self> {
         let cells = Cells::read(seen.package, seen.book, &seen.appraisal)?;
         let lines = lines(&seen.appraisal, &cells);
         let npv = |choice: &Choice| {

@@ -7,6 +7,7 @@ use super::{Compared, Standing};
 use crate::appraisal::{Held, StreamKind, Target, TargetRole};
 use crate::clock::label_words;
 use crate::findings::{Finding, Kind};
+use crate::patch::Cached;
 use crate::problem::Place;
 
 /// A total has to miss what the basis gives by so many times its tolerance before a reading of it says anything.
@@ -23,7 +24,9 @@ struct Reading {
 
 /// Totals whose held numbers are those of a total without its last or first years, without a stream, with one counted
 /// twice or with the other sign, or a thousand or a million times too large or small.
-pub(super) fn findings(look: &Look, told: &[Finding]) -> Vec<Finding> {
+///
+/// Totals that follow from other numbers of the workbook are left out.
+pub(super) fn findings(look: &Look, told: &[Finding], follows: impl Fn(&Compared) -> bool) -> Vec<Finding> {
     let mut found: Vec<Finding> = Vec::new();
     let mut differing: Vec<&Compared> = look
         .seen
@@ -39,7 +42,7 @@ pub(super) fn findings(look: &Look, told: &[Finding]) -> Vec<Finding> {
     for compared in differing {
         let target = look.seen.target(compared);
         let Some(held) = look.seen.held(compared).number() else { continue };
-        if explained(look, compared, told) {
+        if explained(look, compared, told) || follows(compared) {
             continue;
         }
         let Some(finding) = read(look, compared, target, held) else { continue };
@@ -64,7 +67,7 @@ fn is_total(role: &TargetRole) -> bool {
 
 /// Whether a finding by formulas lies in the total or in what it rests on.
 fn explained(look: &Look, compared: &Compared, told: &[Finding]) -> bool {
-    let Some(&at) = look.cells.each(&compared.at).first() else { return false };
+    let Some(&at) = look.cells.each(&compared.at.clone().into()).first() else { return false };
     if !matches!(look.seen.held(compared), Held::Formula { .. }) {
         return false;
     }
@@ -83,12 +86,17 @@ fn explained(look: &Look, compared: &Compared, told: &[Finding]) -> bool {
 fn read(look: &Look, compared: &Compared, target: &Target, held: f64) -> Option<Finding> {
     let c = compared.choice;
     let choice = &look.seen.appraisal.choices[c];
-    // Over a baseline, or with tails, the total holds more than the flows of these streams.
     let own = choice.targets.iter().find(|t| t.role == TargetRole::Factor);
     let own: Option<Vec<f64>> = own.and_then(|t| t.held.iter().map(Held::number).collect());
     let tolerance = compared.tolerance.max(rounding(held));
+    let Cached::Number(expected) = compared.expected else { return None };
     let mut bases = vec![Totals::new(look, c, target, None)?];
     bases.extend(own.and_then(|own| Totals::new(look, c, target, Some(&own))));
+    // Over a baseline a total holds that of the baseline, too.
+    let beside = expected - bases[0].whole;
+    if beside.abs() > 1e-9 * bases[0].whole.abs().max(expected.abs()) {
+        bases.iter_mut().for_each(|totals| totals.whole += beside);
+    }
     let right =
         |totals: &Totals| (held - totals.whole).abs() <= CLEAR * tolerance.max(1e-9 * totals.whole.abs());
     // What follows from the factors beside it is right for them.
@@ -144,10 +152,6 @@ impl<'a> Totals<'a> {
     fn new(look: &Look<'a, '_>, c: usize, target: &'a Target, factors: Option<&[f64]>) -> Option<Self> {
         let choice = &look.seen.appraisal.choices[c];
         let outcome = &look.seen.outcomes[c];
-        let npv = matches!(target.role, TargetRole::Npv | TargetRole::PvTotal(None));
-        if npv && look.seen.appraisal.baseline.is_some() {
-            return None;
-        }
         let mut parts = Vec::new();
         for (s, stream) in choice.streams.iter().enumerate() {
             let side = match (&target.role, stream.kind) {

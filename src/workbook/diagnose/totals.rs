@@ -54,10 +54,12 @@ pub(super) fn findings(look: &Look) -> Vec<Finding> {
         targets.sort_by_key(|target| rank(&target.role));
         for target in targets.into_iter().filter(|t| matches!(t.held[0], Held::Formula { .. })) {
             let Some(&at) = look.cells.each(&target.at).first() else { continue };
-            for suspect in suspected(look, c, choice, target, at) {
+            let slopes = slopes(look, choice, at);
+            for suspect in suspected(look, c, choice, target, at, &slopes) {
+                // A total that rests on another repeats what is wrong with that.
                 let known = suspects.iter().any(|other| {
                     (other.choice, other.stream, other.slip) == (suspect.choice, suspect.stream, suspect.slip)
-                        && other.root == suspect.root
+                        && (other.root == suspect.root || slopes.reaches(other.target))
                 });
                 if !known {
                     suspects.push(suspect);
@@ -104,7 +106,7 @@ fn multiples(
     let choice = &look.seen.appraisal.choices[c];
     let stream = &choice.streams[s];
     let sign = side(role, stream) / crate::formulas::side(stream.kind);
-    let own = own_factors(look, choice);
+    let own = own_factors(choice);
     let cells = look.cells.each(&stream.at);
     let mut found = Vec::new();
     for (i, cell) in cells.iter().enumerate().filter(|(i, _)| stream.raw[*i] != 0.0) {
@@ -124,22 +126,31 @@ fn multiples(
 }
 
 /// The factors that the workbook itself holds, year by year.
-fn own_factors(look: &Look, choice: &Choice) -> Option<Vec<Option<f64>>> {
-    let _ = look;
+fn own_factors(choice: &Choice) -> Option<Vec<Option<f64>>> {
     let target = choice.targets.iter().find(|target| target.role == TargetRole::Factor)?;
     Some(target.held.iter().map(Held::number).collect())
 }
 
-fn suspected(look: &Look, c: usize, choice: &Choice, target: &Target, at: At) -> Vec<Suspect> {
-    // A flow counts by its own cell, whatever other flows are worked out from it.
+/// How a total moves with each flow by its own cell, whatever other flows are worked out from it.
+fn slopes(look: &Look, choice: &Choice, at: At) -> Slopes {
     let flows = choice.streams.iter().flat_map(|stream| look.cells.each(&stream.at)).collect();
-    let slopes = Slopes::of(at, &look.cells, &flows);
+    Slopes::of(at, &look.cells, &flows)
+}
+
+fn suspected(
+    look: &Look,
+    c: usize,
+    choice: &Choice,
+    target: &Target,
+    at: At,
+    slopes: &Slopes,
+) -> Vec<Suspect> {
     if slopes.unsettled {
         return Vec::new();
     }
     let counted: Vec<(usize, Vec<(usize, f64)>)> = (0..choice.streams.len())
         .filter(|s| side(&target.role, &choice.streams[*s]) != 0.0)
-        .filter_map(|s| Some((s, multiples(look, c, s, &target.role, &slopes)?)))
+        .filter_map(|s| Some((s, multiples(look, c, s, &target.role, slopes)?)))
         .filter(|(_, years)| !years.is_empty())
         .collect();
     // A total over typed numbers, or one that a person typed: its formulas say nothing of the flows.
@@ -161,7 +172,7 @@ fn suspected(look: &Look, c: usize, choice: &Choice, target: &Target, at: At) ->
             Slip::Ends(_) | Slip::Begins(_) => {
                 let counted = relative.iter().filter(|(_, m)| *m != 0.0).map(|(i, _)| *i);
                 let near = counted.min_by_key(|i| i.abs_diff(wrong[0]));
-                near.map(|i| left_out(look, &slopes, cells[i], cells[wrong[0]]))
+                near.map(|i| left_out(look, slopes, cells[i], cells[wrong[0]]))
             }
             Slip::Absent => {
                 let peers = counted.iter().filter(|(p, ys)| p != s && ys.iter().any(|(_, m)| *m != 0.0));
@@ -170,10 +181,10 @@ fn suspected(look: &Look, c: usize, choice: &Choice, target: &Target, at: At) ->
                 peer.and_then(|(p, ys)| {
                     let (i, _) = ys.iter().find(|(_, m)| *m != 0.0)?;
                     let theirs = look.cells.each(&choice.streams[*p].at)[*i];
-                    Some(left_out(look, &slopes, theirs, cells[*i]))
+                    Some(left_out(look, slopes, theirs, cells[*i]))
                 })
             }
-            Slip::Times(_) => doubled(look, &slopes, cells[wrong[0]]),
+            Slip::Times(_) => doubled(look, slopes, cells[wrong[0]]),
             Slip::Scaled(_) | Slip::Turned => None,
         };
         let root = root.unwrap_or(at);
@@ -409,7 +420,7 @@ fn finding(look: &Look, group: &[Suspect]) -> Finding {
     };
     let effect = effect(look, group);
     let at = whole(look, first.root);
-    let named = choice.targets.iter().find(|target| target.at == at);
+    let named = choice.targets.iter().find(|target| target.at.hull() == at);
     let place = Place::cells(&at.sheet, at.range);
     let place = named.map_or_else(|| place.clone(), |target| place.clone().called(&target.from));
     Finding {

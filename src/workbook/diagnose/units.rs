@@ -7,10 +7,11 @@ use crate::findings::{Finding, Kind};
 use crate::problem::Place;
 use crate::references::Range;
 
-/// A stream so many times smaller (or larger) than every other is out of scale.
-const OUT_OF_SCALE: f64 = 150.0;
-/// The same where its numbers are also finer (or coarser) grained by so many times.
-const OUT_OF_GRAIN: (f64, f64) = (20.0, 100.0);
+/// How many decades a stream has to be from its peers: by its size alone, and where its numbers are also finer (or coarser)
+/// grained than theirs.
+const OUT_OF_SCALE: (f64, f64) = (2.3, 1.4);
+/// So many times finer or coarser.
+const OUT_OF_GRAIN: f64 = 100.0;
 /// Years with flows that a size is judged by, at least.
 const FEWEST_YEARS: usize = 5;
 /// How close two sizes have to be to a thousand (or a million) times each other.
@@ -29,18 +30,16 @@ pub(super) fn findings(look: &Look) -> Vec<Finding> {
             choice.streams.iter().map(|s| heading_unit(look, s)).collect();
         let mut new = by_heading(look, c, choice, &units);
         for s in 0..choice.streams.len() {
-            let place = Place::cells(&choice.streams[s].at.sheet, choice.streams[s].at.range);
+            let place = Place::area(&choice.streams[s].at);
             if new
                 .iter()
                 .any(|finding| (&finding.place.sheet, finding.place.range) == (&place.sheet, place.range))
             {
                 continue;
             }
-            new.extend(within(look, c, s));
+            let part = within(look, c, s);
             // Where units are declared, somebody has thought of them.
-            if !declared {
-                new.extend(across(look, c, s).or_else(|| by_size(look, c, s)));
-            }
+            new.extend(part.or_else(|| if declared { None } else { by_size(look, c, s) }));
         }
         new.retain(|new| found.iter().all(|other| other.place != new.place));
         found.extend(new);
@@ -56,7 +55,7 @@ pub(super) fn unit_of(text: &str) -> Option<f64> {
         lower.split(|c: char| c.is_whitespace() || matches!(c, '(' | ')' | '[' | ']' | ',' | ';' | ':'))
     {
         let bare = word.trim_matches(|c: char| matches!(c, '\'' | '’' | '‘' | '.' | '"'));
-        let money = bare.trim_start_matches(|c: char| matches!(c, '£' | '$' | '€')).trim_end_matches("/yr");
+        let money = bare.trim_start_matches(['£', '$', '€']).trim_end_matches("/yr");
         let symbol = money.len() < bare.len();
         let unit = match money {
             "thousand" | "thousands" | "000" | "000s" | "1000s" => Some(1e3),
@@ -83,7 +82,7 @@ pub(super) fn unit_of(text: &str) -> Option<f64> {
 
 /// What the texts before a stream say of its unit, and the text.
 fn heading_unit(look: &Look, stream: &Stream) -> Option<(f64, String)> {
-    let headings = line_of(&stream.at, &look.cells)?.headings(&look.cells);
+    let headings = line_of(&stream.at.hull(), &look.cells)?.headings(&look.cells);
     headings.into_iter().rev().find_map(|text| Some((unit_of(&text)?, text)))
 }
 
@@ -125,100 +124,61 @@ fn by_heading(look: &Look, c: usize, choice: &Choice, units: &[Option<(f64, Stri
     found
 }
 
-fn usual(stream: &Stream) -> Option<f64> {
-    let mut sizes: Vec<f64> =
-        stream.raw.iter().map(|x| (x * stream.unit).abs()).filter(|x| *x > 0.0).collect();
-    sizes.sort_by(f64::total_cmp);
-    (sizes.len() >= FEWEST_YEARS).then(|| sizes[sizes.len() / 2])
-}
-
 /// A thousand or a million, where a ratio of sizes is near one of them or its inverse.
 fn near_scale(ratio: f64, close: f64) -> Option<f64> {
     [1e-6, 1e-3, 1e3, 1e6].into_iter().find(|scale| (ratio / scale - 1.0).abs() <= close)
 }
 
-/// The same stream of other options is a thousand times larger or smaller.
-fn across(look: &Look, c: usize, s: usize) -> Option<Finding> {
-    let stream = &look.seen.appraisal.choices[c].streams[s];
-    let own = usual(stream)?;
-    let name = crate::roles::key(&stream.name);
-    let others = look.seen.appraisal.choices.iter().enumerate().filter(|(other, _)| *other != c);
-    let twins: Vec<f64> = others
-        .flat_map(|(_, choice)| &choice.streams)
-        .filter(|other| {
-            other.kind == stream.kind && other.at != stream.at && crate::roles::key(&other.name) == name
-        })
-        .filter_map(usual)
-        .collect();
-    // Of two options either may be wrong: the sizes of the other streams decide, in `by_size`.
-    if twins.len() < 2 {
-        return None;
-    }
-    let far = |twin: &f64| {
-        [1e-6, 1e-3, 1e3, 1e6].into_iter().find(|scale| (scale / 4.0..scale * 4.0).contains(&(own / twin)))
-    };
-    let scale = far(&twins[0])?;
-    twins.iter().all(|twin| far(twin) == Some(scale)).then(|| {
-        let words = format!(
-            "`{}` is usually {} here and {} in another option, about {} times as much.",
-            stream.name,
-            figure(own),
-            figure(twins[0]),
-            figure(scale)
-        );
-        finding(look, c, s, scale, 0.85, format!("usually {}", figure(own)), words)
-    })
-}
-
-/// The stream is out of scale with every other stream of its option, and in scale a thousand times larger or smaller.
+/// The stream is out of scale with the other streams of its option and with its like in other options, and in scale a
+/// thousand (or a million) times larger or smaller.
 fn by_size(look: &Look, c: usize, s: usize) -> Option<Finding> {
-    let choice = &look.seen.appraisal.choices[c];
-    let own = usual(&choice.streams[s])?;
-    let others: Vec<f64> = choice
-        .streams
-        .iter()
-        .enumerate()
-        .filter(|(other, _)| *other != s)
-        .filter_map(|(_, x)| usual(x))
-        .collect();
-    if others.len() < 2 {
+    let choices = &look.seen.appraisal.choices;
+    let stream = &choices[c].streams[s];
+    let own = size(stream)?;
+    let beside: Vec<&Stream> =
+        choices[c].streams.iter().enumerate().filter(|(other, _)| *other != s).map(|(_, x)| x).collect();
+    let name = crate::roles::key(&stream.name);
+    let elsewhere = choices.iter().enumerate().filter(|(other, _)| *other != c).flat_map(|(_, x)| &x.streams);
+    let alike = elsewhere
+        .filter(|x| x.kind == stream.kind && x.at != stream.at && crate::roles::key(&x.name) == name);
+    let mut peers: Vec<f64> = beside.iter().copied().chain(alike).filter_map(size).collect();
+    if peers.len() < 2 {
         return None;
     }
-    let low = others.iter().copied().fold(f64::INFINITY, f64::min);
-    let high = others.iter().copied().fold(0.0, f64::max);
-    let grains: Vec<f64> = choice
-        .streams
-        .iter()
-        .enumerate()
-        .filter(|(other, _)| *other != s)
-        .filter_map(|(_, x)| grain(x))
-        .collect();
-    let (factor, by) = OUT_OF_GRAIN;
+    peers.sort_by(f64::total_cmp);
+    // Of two in the middle the one that is nearer.
+    let (low, high) = (peers[(peers.len() - 1) / 2], peers[peers.len() / 2]);
+    let off = if own < low { own - low } else { (own - high).max(0.0) };
     // A number entered in thousands among units has three digits less, and one in units among thousands three more.
-    let finer = grain(&choice.streams[s])
-        .is_some_and(|own| !grains.is_empty() && grains.iter().all(|g| own * by <= g * 1.01));
-    let coarser = grain(&choice.streams[s])
-        .is_some_and(|own| !grains.is_empty() && grains.iter().all(|g| own >= g * by * 0.99));
-    let small = own * if finer { factor } else { OUT_OF_SCALE } < low;
-    let large = own > high * if coarser { factor } else { OUT_OF_SCALE };
-    let scale = if small && own * 1e3 > low / 30.0 {
-        if own * 1e3 * OUT_OF_SCALE < low { 1e-6 } else { 1e-3 }
-    } else if large && own / 1e3 < high * 30.0 {
-        1e3
-    } else {
+    let grains: Vec<f64> = beside.iter().filter_map(|x| grain(x)).collect();
+    let own_grain = grain(stream).filter(|_| !grains.is_empty());
+    let finer = own_grain.is_some_and(|own| grains.iter().all(|g| own * OUT_OF_GRAIN <= g * 1.01));
+    let coarser = own_grain.is_some_and(|own| grains.iter().all(|g| own >= g * OUT_OF_GRAIN * 0.99));
+    let in_grain = if off < 0.0 { finer } else { coarser };
+    if off.abs() < if in_grain { OUT_OF_SCALE.1 } else { OUT_OF_SCALE.0 } {
         return None;
-    };
-    let confidence = if finer || coarser { 0.75 } else { 0.6 };
+    }
+    let decades =
+        [3.0, 6.0].into_iter().min_by(|a, b| (off.abs() - a).abs().total_cmp(&(off.abs() - b).abs()))?;
+    let scale = 10f64.powf(decades.copysign(off));
+    let average = |decade: f64| figure(10f64.powf(decade));
     let words = format!(
-        "`{}` is usually {}, and the other streams of the option are usually {} to {}: in their unit it would be {} times \
-         that.",
-        choice.streams[s].name,
-        figure(own),
-        figure(low),
-        figure(high),
+        "`{}` comes to {} a year, and the streams beside it and its like in other options to {} to {}: in their unit it would \
+         be {} times what it is.",
+        stream.name,
+        average(own),
+        average(peers[0]),
+        average(peers[peers.len() - 1]),
         figure(1.0 / scale)
     );
-    Some(finding(look, c, s, scale, confidence, format!("usually {}", figure(own)), words))
+    let confidence = if in_grain { 0.75 } else { 0.6 };
+    Some(finding(look, c, s, scale, confidence, format!("{} a year", average(own)), words))
+}
+
+/// The size of a stream: the logarithm of its mean flow a year, signs apart; none where nothing flows.
+fn size(stream: &Stream) -> Option<f64> {
+    let total: f64 = stream.raw.iter().map(|x| (x * stream.unit).abs()).sum();
+    (total > 0.0).then(|| (total / stream.raw.len() as f64).log10())
 }
 
 /// The largest power of ten that every flow is a whole multiple of; none where they are of no such kind.
@@ -259,7 +219,7 @@ fn within(look: &Look, c: usize, s: usize) -> Option<Finding> {
     added[c] =
         filled[from..to].iter().map(|i| stream.raw[*i] * (1.0 - 1.0 / scale) * look.worth(c, s, *i)).sum();
     let effect = look.in_flows(&added);
-    let nth = |k: usize| crate::formulas::nth(stream.at.range, filled[k]);
+    let nth = |k: usize| stream.at.nth(filled[k]);
     Some(Finding {
         kind: Kind::UnitMismatch,
         place: Place::cells(&stream.at.sheet, Range::new(nth(from), nth(to - 1))).called(&stream.from),
@@ -294,7 +254,7 @@ fn finding(
     let effect = look.in_flows(&added);
     Finding {
         kind: Kind::UnitMismatch,
-        place: Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
+        place: Place::area(&stream.at).called(&stream.from),
         found,
         expected: format!("{} times that, in the unit of the other streams", figure(1.0 / scale)),
         effect_on_npv: effect.npv,

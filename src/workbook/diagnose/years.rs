@@ -2,6 +2,7 @@
 
 use std::collections::BTreeMap;
 
+use super::Seen;
 use super::structure::Look;
 use crate::appraisal::Label;
 use crate::clock::label_words;
@@ -44,7 +45,7 @@ pub(super) fn findings(look: &Look) -> Vec<Finding> {
         if !slip || years.len() < axis.labels.len() {
             continue;
         }
-        let cell = crate::formulas::nth(axis.at.range, gaps[0]);
+        let cell = axis.at.nth(gaps[0]);
         let at = SheetRange::new(&axis.at.sheet, Range::cell(cell));
         let mut added = vec![0.0; look.seen.appraisal.choices.len()];
         for (c, choice) in
@@ -73,6 +74,27 @@ pub(super) fn findings(look: &Look) -> Vec<Finding> {
         });
     }
     found
+}
+
+/// Whether cells of results stand behind years that are left out: what is off there follows from that.
+pub(super) fn behind_a_gap(seen: &Seen, gaps: &[Finding], place: &SheetRange) -> bool {
+    seen.appraisal.choices.iter().any(|choice| {
+        let years = &seen.appraisal.axes[choice.axis].at;
+        let first = (0..years.len() as usize).find(|i| {
+            let cell = years.nth(*i);
+            gaps.iter().any(|gap| {
+                gap.kind == Kind::YearsBroken
+                    && gap.place.sheet.as_ref() == Some(&years.sheet)
+                    && gap.place.range.is_some_and(|range| range.contains(cell))
+            })
+        });
+        first.is_some_and(|first| {
+            choice.targets.iter().any(|target| {
+                let behind = |cell| (first..target.held.len()).any(|i| target.at.nth(i) == cell);
+                target.at.sheet == place.sheet && behind(place.range.first) && behind(place.range.last)
+            })
+        })
+    })
 }
 
 #[cfg(test)]

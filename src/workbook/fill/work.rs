@@ -34,7 +34,9 @@ pub(super) struct Run<'a> {
     pub book: &'a Workbook,
     pub request: &'a FillRequest,
     pub catalogue: &'a Catalogue,
-    /// hence's own sheets that this fill replaces.
+    /// All of hence's own sheets: formulas that refer to them are its own.
+    pub own: &'a [OwnSheet],
+    /// Those that this fill replaces.
     pub previous: &'a [OwnSheet],
 }
 
@@ -132,7 +134,7 @@ impl Work {
 
     fn decided(&self, run: &Run<'_>, stale: &Stale) -> Result<Plan> {
         let ways = Ways {
-            previous: run.previous,
+            own: run.own,
             written: &self.earlier,
             formulas: run.request.formulas,
             replace_formulas: run.request.replace_formulas,
@@ -225,7 +227,7 @@ pub(super) fn check_apart(works: &[Work]) -> Result<()> {
             if seen.insert((w, &target.from)) {
                 let message =
                     format!("is filled by the appraisal `{}`, and by `{}` as {from}", of(w), of(first));
-                let place = Place::cells(&target.at.sheet, target.at.range).called(&target.from);
+                let place = Place::area(&target.at).called(&target.from);
                 problems.push(
                     Problem::error("target-overlap", place, message)
                         .hint("give each appraisal cells of its own"),
@@ -239,7 +241,7 @@ pub(super) fn check_apart(works: &[Work]) -> Result<()> {
 /// Which of hence's sheets an earlier fill made for each of the parts, those for none of them left out.
 ///
 /// Sheets of a fill without a plan go to the first part: a plan with appraisals takes their place.
-pub(super) fn left_for(parts: &[Option<Part>], own: Vec<OwnSheet>) -> Vec<Vec<OwnSheet>> {
+pub(super) fn left_for(parts: &[Option<Part>], own: &[OwnSheet]) -> Vec<Vec<OwnSheet>> {
     let mut left: Vec<Vec<OwnSheet>> = parts.iter().map(|_| Vec::new()).collect();
     let names: Vec<Option<String>> =
         parts.iter().map(|part| part.as_ref()?.appraisal.as_deref().map(key)).collect();
@@ -247,7 +249,7 @@ pub(super) fn left_for(parts: &[Option<Part>], own: Vec<OwnSheet>) -> Vec<Vec<Ow
         let wanted = sheet.appraisal.as_deref().map(key);
         let part = names.iter().position(|name| *name == wanted);
         if let Some(part) = part.or(wanted.is_none().then_some(0)) {
-            left[part].push(sheet);
+            left[part].push(sheet.clone());
         }
     }
     left

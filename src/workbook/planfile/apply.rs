@@ -8,7 +8,7 @@ use crate::own::own_sheets;
 use crate::problem::{Place, Problem, Result};
 use crate::reading::Value;
 use crate::references::{Range, SheetRange, quote_sheet};
-use crate::roles::{RoleName, key};
+use crate::roles::{Role, RoleName, key};
 
 use super::PlanFile;
 use super::parse::{Entry, Section, What};
@@ -29,6 +29,8 @@ pub(crate) struct Planned {
     pub name: RoleName,
     /// `shelf.toml line 7, cost_works`.
     pub from: String,
+    /// Its line.
+    pub line: u32,
     /// What it says.
     pub says: Says,
 }
@@ -42,6 +44,21 @@ pub struct Part {
     pub(crate) entries: Vec<Planned>,
     /// What of the plan does not fit the workbook.
     pub(crate) problems: Vec<Problem>,
+    /// Roles among what does not fit: they are wrong, not missing.
+    pub(crate) lost: Vec<Role>,
+    /// Sheets that other appraisals of the plan stand on.
+    pub(crate) elsewhere: BTreeSet<String>,
+}
+
+impl Planned {
+    /// Where the plan says it.
+    pub(crate) fn place(&self) -> Place {
+        in_plan(&self.from, self.line)
+    }
+}
+
+fn in_plan(from: &str, line: u32) -> Place {
+    Place { line: Some(line), ..Place::name(from) }
 }
 
 impl PlanFile {
@@ -82,6 +99,11 @@ impl PlanFile {
         }
         if !problems.is_empty() {
             return Err(problems.into());
+        }
+        let on: Vec<BTreeSet<String>> = parts.iter().map(|part| sheets.of_part(part)).collect();
+        for (i, part) in parts.iter_mut().enumerate() {
+            let others = on.iter().enumerate().filter(|(other, _)| *other != i);
+            part.elsewhere = others.flat_map(|(_, sheets)| sheets.clone()).collect();
         }
         if let Some(wanted) = self.chosen() {
             let names: Vec<String> = parts.iter().filter_map(|part| part.appraisal.clone()).collect();
@@ -131,7 +153,7 @@ impl<'a> Sheets<'a> {
     }
 
     fn place(&self, line: u32) -> Place {
-        Place::name(&format!("{} line {line}", self.file))
+        in_plan(&format!("{} line {line}", self.file), line)
     }
 
     fn no_sheet(&self, line: u32, wanted: &str) -> Problem {
@@ -196,6 +218,16 @@ impl<'a> Sheets<'a> {
         part
     }
 
+    /// The sheets that cells of an appraisal stand on.
+    fn of_part(&self, part: &Part) -> BTreeSet<String> {
+        let cells = part.entries.iter().filter_map(|entry| match &entry.says {
+            Says::Cells(text) => text.split(',').next()?.parse::<SheetRange>().ok(),
+            Says::Value(_) => None,
+        });
+        let index = |at: SheetRange| self.book.sheet_index(&at.sheet);
+        cells.filter_map(index).map(|index| self.book.sheets[index].name.clone()).collect()
+    }
+
     fn add(&self, part: &mut Part, within: &[&Section], entry: &Entry, option: Option<&str>) {
         let mut name = entry.role.clone();
         if let Some(option) = option {
@@ -206,37 +238,42 @@ impl<'a> Sheets<'a> {
             What::Number(x) => Says::Value(Value::Number(*x)),
             What::Text(text) => Says::Value(Value::Text(text.clone())),
             What::Date(date) => Says::Value(Value::Date(serial(*date, self.book.date1904))),
-            What::Cells(text) => match self.cells(text, &from, within) {
+            What::Cells(text) => match self.cells(text, &in_plan(&from, entry.line), within) {
                 Ok(text) => Says::Cells(text),
                 Err(problem) => {
                     part.problems.push(*problem);
+                    part.lost.push(name.role);
                     return;
                 }
             },
         };
-        part.entries.push(Planned { name, from, says });
+        part.entries.push(Planned { name, from, line: entry.line, says });
     }
 
     /// Cells with their sheet: as given, or that of the option, the appraisal or the plan.
     fn cells(
         &self,
         text: &str,
-        from: &str,
+        place: &Place,
         within: &[&Section],
     ) -> std::result::Result<String, Box<Problem>> {
-        let place = || Place::name(from);
-        if let Ok(at) = text.parse::<SheetRange>() {
-            if self.book.sheet_index(&at.sheet).is_some() {
-                return Ok(text.to_owned());
-            }
-            let problem = Problem::error("plan-sheet", place(), format!("there is no sheet `{}`", at.sheet));
+        // Pieces of a row or column stand between commas: a sheet counts until another is named.
+        let first = text.split(',').next().unwrap_or_default().trim();
+        let is_cells = first.parse::<Range>().is_ok();
+        if let (false, Ok(at)) = (is_cells, text.parse::<SheetRange>())
+            && self.book.sheet_index(&at.sheet).is_none()
+        {
+            let problem =
+                Problem::error("plan-sheet", place.clone(), format!("there is no sheet `{}`", at.sheet));
             return Err(problem.hint(format!("the sheets are {}", listed(&self.names))).into());
         }
+        if !is_cells && text.contains('!') {
+            return Ok(text.to_owned());
+        }
         let home = within.iter().find_map(|section| section.sheet.as_ref());
-        let is_cells = text.parse::<Range>().is_ok();
         let Some((sheet, line)) = home else {
             if is_cells {
-                let problem = Problem::error("plan-sheet", place(), format!("`{text}` names no sheet"));
+                let problem = Problem::error("plan-sheet", place.clone(), format!("`{text}` names no sheet"));
                 return Err(problem
                     .hint(format!("write Sheet1!{text}, or add sheet = \"Sheet1\" above"))
                     .into());

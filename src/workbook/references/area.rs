@@ -58,6 +58,12 @@ impl Area {
         Ok(Area { sheet: first.sheet.clone(), parts })
     }
 
+    /// The same cells of another sheet.
+    #[must_use]
+    pub fn on_sheet(&self, sheet: &str) -> Area {
+        Area { sheet: sheet.to_owned(), parts: self.parts.clone() }
+    }
+
     /// Its pieces in order.
     pub fn parts(&self) -> &[Range] {
         &self.parts
@@ -66,6 +72,11 @@ impl Area {
     /// Its pieces with their sheet.
     pub fn pieces(&self) -> impl Iterator<Item = SheetRange> + '_ {
         self.parts.iter().map(|range| SheetRange { sheet: self.sheet.clone(), range: *range })
+    }
+
+    /// Its cells without the sheet: `C4:M4,P4:Z4`.
+    pub fn cells_text(&self) -> String {
+        self.parts.iter().map(Range::to_string).collect::<Vec<_>>().join(",")
     }
 
     /// The smallest rectangle that holds it.
@@ -121,6 +132,11 @@ impl Area {
             && self.parts.iter().any(|part| other.parts.iter().any(|theirs| part.intersects(theirs)))
     }
 
+    /// Whether it shares a cell with a rectangle.
+    pub fn meets(&self, at: &SheetRange) -> bool {
+        self.sheet == at.sheet && self.parts.iter().any(|part| part.intersects(&at.range))
+    }
+
     /// Where areas of one length come apart: pieces that are unbroken in every one of them, by their first place and
     /// number of cells.
     pub fn unbroken(areas: &[&Area]) -> Vec<(usize, usize)> {
@@ -161,11 +177,7 @@ impl From<SheetRange> for Area {
 
 impl fmt::Display for Area {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        write!(f, "{}!", quote_sheet(&self.sheet))?;
-        for (i, part) in self.parts.iter().enumerate() {
-            write!(f, "{}{part}", if i > 0 { "," } else { "" })?;
-        }
-        Ok(())
+        write!(f, "{}!{}", quote_sheet(&self.sheet), self.cells_text())
     }
 }
 

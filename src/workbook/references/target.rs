@@ -117,7 +117,8 @@ fn union(all: &[Spanned<'_>]) -> Option<NameTarget> {
     for t in all {
         match &t.token {
             Token::Space | Token::Operator("(" | ")") => {}
-            Token::Operator(",") if !wanted => wanted = true,
+            // LibreOffice saves a union in brackets with its own operator.
+            Token::Operator("," | "~") if !wanted => wanted = true,
             Token::Ref(reference) if wanted => {
                 wanted = false;
                 match &reference.sheet {
@@ -162,6 +163,7 @@ mod tests {
             ("'TABLE'!$A$1:$B$2", Cells(cells("TABLE!A1:B2"))),
             ("Sheet1!$A$1,Sheet2!$B$2", Union(vec![cells("Sheet1!A1"), cells("Sheet2!B2")])),
             ("(Sheet1!$A$1,Sheet1!$C$1)", Union(vec![cells("Sheet1!A1"), cells("Sheet1!C1")])),
+            ("(Sheet1!$A$1~Sheet1!$C$1)", Union(vec![cells("Sheet1!A1"), cells("Sheet1!C1")])),
             ("Data!A1", Relative),
             ("Data!$A1:$B$2", Relative),
             ("Data!A:A", Relative),

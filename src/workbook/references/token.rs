@@ -212,8 +212,8 @@ fn next_token(text: &str, at: usize) -> (Token<'_>, usize) {
         },
         b'<' if matches!(byte(text, at + 1), b'=' | b'>') => (Token::Operator(&text[at..at + 2]), at + 2),
         b'>' if byte(text, at + 1) == b'=' => (Token::Operator(&text[at..at + 2]), at + 2),
-        b'+' | b'-' | b'*' | b'/' | b'^' | b'&' | b'=' | b'<' | b'>' | b'%' | b'(' | b')' | b',' | b';'
-        | b':' | b'{' | b'}' | b'@' => (Token::Operator(&text[at..at + 1]), at + 1),
+        b'+' | b'-' | b'*' | b'/' | b'^' | b'&' | b'=' | b'<' | b'>' | b'%' | b'(' | b')' | b',' | b'~'
+        | b';' | b':' | b'{' | b'}' | b'@' => (Token::Operator(&text[at..at + 1]), at + 1),
         c if in_word(c) => word(text, at),
         _ => (Token::Other(&text[at..at + 1]), at + 1),
     }

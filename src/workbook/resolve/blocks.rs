@@ -3,7 +3,7 @@
 use crate::appraisal::{Axis, Direction, Given, Label, Stream, StreamKind};
 use crate::problem::{Place, Problem};
 use crate::reading::{Grid, ReadCell, Value};
-use crate::references::{Cell, Range, SheetRange};
+use crate::references::{Area, Cell, Range, SheetRange};
 use crate::roles::{Role, key};
 
 use super::cells::{number, one};
@@ -15,7 +15,7 @@ use super::{Context, note};
 struct Line {
     label: Value,
     label_at: Cell,
-    at: Range,
+    at: Area,
     cells: Vec<(Cell, ReadCell)>,
 }
 
@@ -28,9 +28,9 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
         return Vec::new();
     }
     let mut streams: Vec<Stream> = Vec::new();
-    for line in lines(&grid, axis.direction) {
+    for line in lines(&grid, axis) {
         let Some(name) = label(context, named, &line) else { continue };
-        let place = Place::cells(&named.at.sheet, line.at).called(&name);
+        let place = Place::area(&line.at).called(&name);
         if line.cells.iter().all(|(_, cell)| cell.value == Value::Blank && cell.formula.is_none()) {
             context.report(note("block-heading", place, "has no numbers and is taken for a heading"));
             continue;
@@ -49,8 +49,12 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
         }
         if let Some(twin) = streams.iter().find(|stream| key(&stream.name) == key(&name)) {
             context.report(
-                Problem::error("block-label", place, format!("has the same label as {}", twin.at.range))
-                    .hint("give each row its own label"),
+                Problem::error(
+                    "block-label",
+                    place,
+                    format!("has the same label as {}", twin.at.cells_text()),
+                )
+                .hint("give each row its own label"),
             );
             continue;
         }
@@ -67,8 +71,8 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
         streams.push(Stream {
             name,
             kind,
-            from: format!("{}, row {}", named.from, line.at),
-            at: SheetRange { sheet: named.at.sheet.clone(), range: line.at },
+            from: format!("{}, row {}", named.from, line.at.cells_text()),
+            at: line.at.clone(),
             raw,
             sign: 1.0,
             unit: 1.0,
@@ -91,7 +95,9 @@ pub(super) fn streams(context: &mut Context, named: &Named, axis: &Axis) -> Vec<
 
 /// A block is as long as the years, and one more for the labels.
 fn wrong_shape(named: &Named, axis: &Axis) -> Option<Problem> {
-    let years = axis.labels.len() as u64;
+    // Where the years come in pieces, the block reaches over what stands between.
+    let around = axis.at.hull().range;
+    let years = around.len();
     let (long, what) = match axis.direction {
         Direction::Across => (named.at.range.cols(), "columns"),
         Direction::Down => (named.at.range.rows(), "rows"),
@@ -101,13 +107,13 @@ fn wrong_shape(named: &Named, axis: &Axis) -> Option<Problem> {
     }
     let mut fixed = named.at.range;
     match axis.direction {
-        Direction::Across if axis.at.range.first.col > 0 => {
-            fixed.first.col = axis.at.range.first.col - 1;
-            fixed.last.col = axis.at.range.last.col;
+        Direction::Across if around.first.col > 0 => {
+            fixed.first.col = around.first.col - 1;
+            fixed.last.col = around.last.col;
         }
-        Direction::Down if axis.at.range.first.row > 0 => {
-            fixed.first.row = axis.at.range.first.row - 1;
-            fixed.last.row = axis.at.range.last.row;
+        Direction::Down if around.first.row > 0 => {
+            fixed.first.row = around.first.row - 1;
+            fixed.last.row = around.last.row;
         }
         _ => {}
     }
@@ -124,27 +130,30 @@ fn wrong_shape(named: &Named, axis: &Axis) -> Option<Problem> {
     Some(problem.hint(format!("let {} refer to {fixed}", named.from)))
 }
 
-fn lines(grid: &Grid, direction: Direction) -> Vec<Line> {
+fn lines(grid: &Grid, axis: &Axis) -> Vec<Line> {
     let Range { first, last } = grid.at.range;
+    let around = axis.at.hull().range;
+    let direction = axis.direction;
     let count = match direction {
         Direction::Across => first.row..=last.row,
         Direction::Down => first.col..=last.col,
     };
     count
         .map(|i| {
-            let (label_at, start, end) = match direction {
-                Direction::Across => (
-                    Cell { row: i, col: first.col },
-                    Cell { row: i, col: first.col + 1 },
-                    Cell { row: i, col: last.col },
-                ),
-                Direction::Down => (
-                    Cell { row: first.row, col: i },
-                    Cell { row: first.row + 1, col: i },
-                    Cell { row: last.row, col: i },
-                ),
+            let label_at = match direction {
+                Direction::Across => Cell { row: i, col: first.col },
+                Direction::Down => Cell { row: first.row, col: i },
             };
-            let at = Range { first: start, last: end };
+            let beside = |year: Cell| match direction {
+                Direction::Across => Cell { row: i, col: first.col + 1 + year.col - around.first.col },
+                Direction::Down => Cell { row: first.row + 1 + year.row - around.first.row, col: i },
+            };
+            let pieces = axis.at.parts().iter().map(|piece| {
+                let range = Range { first: beside(piece.first), last: beside(piece.last) };
+                SheetRange { sheet: grid.at.sheet.clone(), range }
+            });
+            // They lie in one row as the years do.
+            let at = Area::join(&pieces.collect::<Vec<_>>()).unwrap_or_else(|_| axis.at.clone());
             let cells = at.cells().map(|cell| (cell, grid.get(cell).cloned().unwrap_or_default())).collect();
             let label = grid.get(label_at).map(|cell| cell.value.clone()).unwrap_or_default();
             Line { label, label_at, at, cells }

@@ -2,7 +2,7 @@
 
 use crate::appraisal::{Setting, Stated};
 use crate::problem::{Place, Problem};
-use crate::reading::{Grid, ReadCell, Value};
+use crate::reading::{ReadCell, Value};
 use crate::references::{Cell, Range, SheetRange};
 
 use super::find::Named;
@@ -54,7 +54,7 @@ pub(super) fn error_value(error: &str, place: Place) -> Problem {
         .hint("mend the formula that gives the error")
 }
 
-/// The numbers of a grid in order, blanks as 0, each problem reported with its cell.
+/// The numbers of a row or column in order, blanks as 0, each problem reported with its cell.
 pub(super) struct Numbers {
     /// One a cell.
     pub values: Vec<f64>,
@@ -62,12 +62,12 @@ pub(super) struct Numbers {
     pub blanks: Vec<Cell>,
 }
 
-/// Reads every cell of a grid as a number.
-pub(super) fn numbers(context: &mut Context, grid: &Grid, called: &str) -> Numbers {
+/// Reads every cell of a row or column as a number.
+pub(super) fn numbers(context: &mut Context, named: &Named) -> Option<Numbers> {
     let mut read = Numbers { values: Vec::new(), blanks: Vec::new() };
-    for (cell, content) in grid.iter() {
-        let place = Place::cells(&grid.at.sheet, one(cell)).called(called);
-        match number(content, place) {
+    for (cell, content) in context.along(&named.area)? {
+        let place = Place::cells(&named.at.sheet, one(cell)).called(&named.from);
+        match number(&content, place) {
             Ok(Some(number)) => read.values.push(number),
             Ok(None) => {
                 read.values.push(0.0);
@@ -79,7 +79,7 @@ pub(super) fn numbers(context: &mut Context, grid: &Grid, called: &str) -> Numbe
             }
         }
     }
-    read
+    Some(read)
 }
 
 /// The one cell of a role that takes one, or nothing after a report. What it states is kept for the audit.

@@ -7,7 +7,7 @@ use crate::decide::Rule;
 use crate::problem::{Place, Problem};
 use crate::reading::Value;
 use crate::references::SheetRange;
-use crate::roles::{ROLES, Role, key};
+use crate::roles::{PREFIX, ROLES, Role, key};
 
 use super::cells::shown;
 use super::find::Named;
@@ -111,18 +111,22 @@ fn years_of<'s>(context: &mut Context, split: &'s Split, group: &'s Group) -> Op
 
 /// What the workbook does not say at all, in one problem with how to say it.
 fn report_missing(context: &mut Context, split: &Split, told: &Options) {
+    let lost = context.lost.clone();
     let all = || split.groups.iter().flat_map(|group| &group.named).chain(&split.shared);
-    let has = |test: &dyn Fn(Role) -> bool| all().any(|named| test(named.name.role));
+    let roles = || all().map(|named| named.name.role).chain(lost.iter().copied());
+    let has = |test: &dyn Fn(Role) -> bool| roles().any(test);
     let streams = has(&Role::is_stream);
     let mut lacks = Lacks::default();
     lacks.add(has(&|role| matches!(role, Role::Years | Role::Offsets)), "years", "hence_years");
     lacks.add(streams, "stream of flows", "hence_cost_works");
     lacks.add(has(&|role| role == Role::Basis) || told.basis.is_some(), "basis", "hence_basis");
     lacks.add(has(&Role::is_output), "range to fill", "hence_npv");
-    if let Some(problem) = lacks.problem(Place::default(), "the workbook") {
+    let planned = context.planned;
+    if let Some(problem) = lacks.problem(Place::default(), "the workbook", planned) {
         context.report(problem);
         return;
     }
+    let among = |role: Role| lost.contains(&role);
     for group in &split.groups {
         let place = || {
             let first = group.named.iter().find(|named| named.stated.is_none());
@@ -133,19 +137,23 @@ fn report_missing(context: &mut Context, split: &Split, told: &Options) {
         };
         let shared_stream = split.shared.iter().any(|named| named.name.role.is_stream());
         let mut lacks = Lacks::default();
-        let dated = split.of(group, Role::Years).is_some();
+        let dated = split.of(group, Role::Years).is_some() || among(Role::Years);
         lacks.add(dated || split.of(group, Role::Offsets).is_some(), "years", "hence_years");
         lacks.add(
-            shared_stream || group.named.iter().any(|named| named.name.role.is_stream()),
+            shared_stream
+                || lost.iter().any(|role| role.is_stream())
+                || group.named.iter().any(|named| named.name.role.is_stream()),
             "stream of flows",
             &format!("hence_cost_works__{}", key(&group.name).replace(' ', "_")),
         );
-        lacks.add(split.of(group, Role::Basis).is_some() || told.basis.is_some(), "basis", "hence_basis");
-        if let Some(problem) = lacks.problem(place(), &format!("the option `{}`", group.name)) {
+        let basis = split.of(group, Role::Basis).is_some() || told.basis.is_some();
+        lacks.add(basis || among(Role::Basis), "basis", "hence_basis");
+        if let Some(problem) = lacks.problem(place(), &format!("the option `{}`", group.name), planned) {
             context.report(problem);
         }
         if let Some(years) = split.of(group, Role::Years)
             && split.of(group, Role::Base).is_none()
+            && !among(Role::Base)
             && told.base.is_none()
             && needs_base(context, years)
         {
@@ -155,7 +163,12 @@ fn report_missing(context: &mut Context, split: &Split, told: &Options) {
                     place(),
                     format!("the option `{}` has no base year", group.name),
                 )
-                .hint("enter the year to which values are discounted in a cell, and name it hence_base"),
+                .hint(if planned {
+                    "add the year to which values are discounted to the plan: base = 2026 below [settings], or its cell below \
+                     [roles]"
+                } else {
+                    "enter the year to which values are discounted in a cell, and name it hence_base"
+                }),
             );
         }
     }
@@ -183,19 +196,29 @@ impl Lacks {
         }
     }
 
-    fn problem(self, place: Place, whose: &str) -> Option<Problem> {
+    fn problem(self, place: Place, whose: &str, planned: bool) -> Option<Problem> {
         if self.what.is_empty() {
             return None;
         }
-        let role = self.names[0].trim_start_matches("hence_").split("__").next().unwrap_or_default();
-        Some(
-            Problem::error("missing-role", place, format!("{whose} has no {}", self.what.join(", no ")))
-                .hint(format!(
-                    "select the cells and type {} into the Name Box; or give them with --role, as --role \
+        let problem =
+            Problem::error("missing-role", place, format!("{whose} has no {}", self.what.join(", no ")));
+        let roles = self
+            .names
+            .iter()
+            .map(|name| name.trim_start_matches(PREFIX).split("__").next().unwrap_or_default().to_owned());
+        let roles: Vec<String> = roles.collect();
+        if planned {
+            let roles = roles.join(", ");
+            return Some(problem.hint(format!(
+                "add {roles} to the plan, with their cells; `hence plan BOOK` proposes a plan"
+            )));
+        }
+        let role = &roles[0];
+        Some(problem.hint(format!(
+            "select the cells and type {} into the Name Box; or give them with --role, as --role \
                  {role}=Sheet1!C3:L3; `hence start FILE` makes a ready-named workbook",
-                    self.names.join(", ")
-                )),
-        )
+            self.names.join(", ")
+        )))
     }
 }
 
@@ -235,8 +258,8 @@ fn check_flows(context: &mut Context, split: &Split, choices: &[Choice]) {
     let streams = || choices.iter().flat_map(|choice| &choice.streams);
     let entered = streams().any(|stream| {
         stream.residual.is_some()
-            || context.grid(&stream.at).is_some_and(|grid| {
-                grid.iter().any(|(_, cell)| cell.value != Value::Blank || cell.formula.is_some())
+            || context.along(&stream.at).is_some_and(|cells| {
+                cells.iter().any(|(_, cell)| cell.value != Value::Blank || cell.formula.is_some())
             })
     });
     if entered || context.failed() {

@@ -4,7 +4,7 @@ use std::collections::BTreeSet;
 
 use crate::appraisal::{Choice, Direction, Stream};
 use crate::problem::{Place, Problem};
-use crate::references::{Cell, SheetRange, Token, tokens};
+use crate::references::{Area, Cell, SheetRange, Token, tokens};
 
 use super::Context;
 use super::cells::one;
@@ -45,11 +45,11 @@ pub(crate) fn sum_of(formula: &str, sheet: &str) -> Option<Vec<SheetRange>> {
 pub(super) fn check(context: &mut Context, choice: &Choice) {
     for (i, stream) in choice.streams.iter().enumerate() {
         for other in &choice.streams[..i] {
-            if overlap(&stream.at, &other.at) {
+            if stream.at.intersects(&other.at) {
                 context.report(
                     Problem::error(
                         "overlap",
-                        Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
+                        Place::area(&stream.at).called(&stream.from),
                         format!(
                             "shares cells with {} [{}], whose flows would count twice",
                             other.at, other.from
@@ -60,14 +60,13 @@ pub(super) fn check(context: &mut Context, choice: &Choice) {
             }
         }
     }
-    let ranges: Vec<&SheetRange> = choice.streams.iter().map(|stream| &stream.at).collect();
+    let ranges: Vec<&Area> = choice.streams.iter().map(|stream| &stream.at).collect();
     let reached = reached(context, &ranges);
-    let mut told: BTreeSet<&SheetRange> = BTreeSet::new();
+    let mut told: BTreeSet<&Area> = BTreeSet::new();
     for (stream, reached) in choice.streams.iter().zip(&reached) {
         for other in choice.streams.iter().filter(|other| other.at != stream.at) {
-            let place = Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
-            let through =
-                reached.iter().filter(|(at, _)| overlap(at, &other.at)).map(|(_, adds)| *adds).max();
+            let place = Place::area(&stream.at).called(&stream.from);
+            let through = reached.iter().filter(|(at, _)| other.at.meets(at)).map(|(_, adds)| *adds).max();
             if through.is_some() {
                 told.extend([&stream.at, &other.at]);
             }
@@ -103,7 +102,7 @@ const SUMMED: usize = 12;
 
 /// Warns of a stream whose numbers are, year by year, those of another or the sum of others of its kind: values pasted
 /// over formulas count twice as formulas do. What formulas have `told` already is left out.
-fn repeated(context: &mut Context, choice: &Choice, told: &BTreeSet<&SheetRange>) {
+fn repeated(context: &mut Context, choice: &Choice, told: &BTreeSet<&Area>) {
     for stream in choice.streams.iter().filter(|stream| !told.contains(&stream.at)) {
         let same_kind = |other: &&Stream| other.kind == stream.kind && other.at != stream.at;
         let others: Vec<&Stream> = choice.streams.iter().filter(same_kind).take(SUMMED).collect();
@@ -132,12 +131,8 @@ fn repeated(context: &mut Context, choice: &Choice, told: &BTreeSet<&SheetRange>
         }
         let message = format!("holds in every year the numbers of {}", names.join(" and "));
         context.report(
-            Problem::warning(
-                "same-numbers",
-                Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from),
-                message,
-            )
-            .hint("name the total or its parts, not both; leave it if the numbers are alike by chance"),
+            Problem::warning("same-numbers", Place::area(&stream.at).called(&stream.from), message)
+                .hint("name the total or its parts, not both; leave it if the numbers are alike by chance"),
         );
     }
 }
@@ -150,12 +145,18 @@ type Step = (usize, String, String, bool);
 ///
 /// The first cell of a range that holds a formula stands for all of them, as rows are filled to the side.
 /// All ranges are followed together, so that each depth reads each sheet once.
-fn reached(context: &mut Context, ranges: &[&SheetRange]) -> Vec<BTreeSet<(SheetRange, bool)>> {
+fn reached(context: &mut Context, ranges: &[&Area]) -> Vec<BTreeSet<(SheetRange, bool)>> {
     let mut reached = vec![BTreeSet::new(); ranges.len()];
     let mut steps: Vec<Step> = Vec::new();
     for (i, range) in ranges.iter().enumerate() {
-        let formulas = formulas(context, range);
-        steps.extend(formulas.into_iter().take(1).map(|text| (i, range.sheet.clone(), text, false)));
+        let formulas = range.pieces().flat_map(|piece| formulas(context, &piece));
+        steps.extend(
+            formulas
+                .collect::<Vec<_>>()
+                .into_iter()
+                .take(1)
+                .map(|text| (i, range.sheet.clone(), text, false)),
+        );
     }
     for _ in 0..DEPTH {
         let mut next: Vec<(usize, SheetRange, bool)> = Vec::new();
@@ -193,34 +194,27 @@ fn known(context: &Context, at: &SheetRange) -> bool {
     context.book.sheets.iter().any(|sheet| sheet.name == at.sheet)
 }
 
-/// Whether two ranges share a cell.
-pub(super) fn overlap(a: &SheetRange, b: &SheetRange) -> bool {
-    a.sheet == b.sheet && a.range.intersects(&b.range)
-}
-
 /// Whether a range on the sheet of the years runs beside them, cell for cell.
-pub(super) fn aligned(at: &SheetRange, years: &SheetRange) -> bool {
-    match direction(years) {
-        Some(Direction::Across) => {
-            at.range.first.col == years.range.first.col && at.range.last.col == years.range.last.col
-        }
-        Some(Direction::Down) => {
-            at.range.first.row == years.range.first.row && at.range.last.row == years.range.last.row
-        }
-        None => false,
-    }
+pub(super) fn aligned(at: &Area, years: &Area) -> bool {
+    let direction = direction(&years.hull());
+    at.len() == years.len()
+        && at.cells().zip(years.cells()).all(|(cell, year)| match direction {
+            Some(Direction::Across) => cell.col == year.col,
+            Some(Direction::Down) => cell.row == year.row,
+            None => false,
+        })
 }
 
 /// Reports a stream or target whose cells stand under other years than their own.
-pub(super) fn check_aligned(context: &mut Context, at: &SheetRange, from: &str, years: &SheetRange) {
-    if at.sheet == years.sheet && at.range.len() == years.range.len() && !aligned(at, years) {
+pub(super) fn check_aligned(context: &mut Context, at: &Area, from: &str, years: &Area) {
+    if at.sheet == years.sheet && at.len() == years.len() && !aligned(at, years) {
         context.report(
             Problem::warning(
                 "misaligned",
-                Place::cells(&at.sheet, at.range).called(from),
+                Place::area(at).called(from),
                 format!(
                     "stands beside other cells than the years {}: its first cell is taken for the first year",
-                    years.range
+                    years.cells_text()
                 ),
             )
             .hint("check that the name begins at the first year"),

@@ -2,16 +2,21 @@
 
 use crate::formulas::absolute;
 use crate::model::DefinedName;
-use crate::planfile::{Part, Planned, Says};
+use crate::planfile::{Part, Planned};
 use crate::problem::{Place, Problem};
 use crate::reading::{MAX_CELLS, Value};
 use crate::references::{
-    Cell, MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange, parse_target, quote_sheet,
+    Apart, Area, Cell, MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange, Token, parse_target,
+    quote_sheet, tokens,
 };
 use crate::roles::{self, Role, RoleName, Way};
 
 use super::dynamic::cells_now;
+use super::planned::{belongs_to_all, disagreement, from_plan};
 use super::{Checked, Context};
+
+/// Pieces of one role, at most: formulas have to hold an address of each.
+const MAX_PIECES: usize = 100;
 
 /// Names of tables or columns that a hint lists, at most.
 const SHOWN: usize = 12;
@@ -23,12 +28,16 @@ pub(super) struct Named {
     pub name: RoleName,
     /// The defined name as written, or `--role cost_works`.
     pub from: String,
-    /// Its cells.
+    /// Its cells; the rectangle around them where they come in pieces.
     pub at: SheetRange,
+    /// The same along the years, in one piece or several.
+    pub area: Area,
     /// The sheet that the name is scoped to.
     pub scope: Option<String>,
-    /// What it says, where a plan states it without a cell; `at` is then no place.
+    /// What it says, where a plan or the command line states it without a cell; `at` is then no place.
     pub stated: Option<Value>,
+    /// The line of the plan that it comes from.
+    pub line: Option<u32>,
 }
 
 impl Named {
@@ -36,8 +45,18 @@ impl Named {
     pub(super) fn place(&self) -> Place {
         match self.cells() {
             Some(at) => Place::cells(&at.sheet, at.range).called(&self.from),
-            None => Place::name(&self.from),
+            None => Place { line: self.line, ..Place::name(&self.from) },
         }
+    }
+
+    /// Found at these cells, for the whole workbook.
+    pub(super) fn at(name: RoleName, from: String, area: Area) -> Self {
+        Named { name, from, at: area.hull(), area, scope: None, stated: None, line: None }
+    }
+
+    /// Its pieces; none where it is stated without cells.
+    pub(super) fn pieces(&self) -> impl Iterator<Item = SheetRange> + '_ {
+        self.area.pieces().filter(|_| self.stated.is_none())
     }
 
     /// Its cells; none where it is stated without one.
@@ -58,19 +77,24 @@ impl Named {
         let text = text.trim();
         let value = text.parse().map_or_else(|_| Value::Text(text.to_owned()), Value::Number);
         let name = RoleName { role, stream: None, option: None };
-        Named::without_cell(name, from.to_owned(), value)
+        Named { stated: Some(value), ..Named::at(name, from.to_owned(), nowhere()) }
     }
 
     /// Stated by a plan in no cell.
-    fn without_cell(name: RoleName, from: String, value: Value) -> Self {
-        let at = SheetRange::new("", Range::cell(Cell::new(0, 0)));
-        Named { name, from, at, scope: None, stated: Some(value) }
+    pub(super) fn without_cell(planned: &Planned, value: Value) -> Self {
+        let (name, from) = (planned.name.clone(), planned.from.clone());
+        Named { stated: Some(value), line: Some(planned.line), ..Named::at(name, from, nowhere()) }
     }
 
     /// More cells than are read as one range.
     pub(super) fn too_large(&self) -> bool {
         self.at.range.len() > MAX_CELLS
     }
+}
+
+/// The place of what is stated in no cell.
+fn nowhere() -> Area {
+    Area::from(SheetRange::new("", Range::cell(Cell::new(0, 0))))
 }
 
 /// Every role of the workbook: those of the command line, those of the plan that it does not give, and the names that
@@ -90,7 +114,10 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)], plan: Opti
         }
         match from_plan(context, planned) {
             Ok(named) => found.push(named),
-            Err(problem) => context.report(*problem),
+            Err(problem) => {
+                context.lost.insert(planned.name.role);
+                context.report(*problem);
+            }
         }
     }
     let several = plan.is_some_and(|plan| plan.appraisal.is_some());
@@ -114,11 +141,11 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)], plan: Opti
             continue;
         }
         match (cells(context, defined), stronger) {
-            (Ok(at), None) => {
-                let scope = scope(context, defined);
-                found.push(Named { name, from: defined.name.clone(), at, scope, stated: None });
+            (Ok(area), None) => {
+                let (from, scope) = (defined.name.clone(), scope(context, defined));
+                found.push(Named { scope, ..Named::at(name, from, area) });
             }
-            (Ok(at), Some((_, planned))) => disagreement(context, &planned, &defined.name, &at),
+            (Ok(area), Some((_, planned))) => disagreement(context, &planned, &defined.name, area),
             (Err(problem), None) => context.report(*problem),
             (Err(_), Some(_)) => {}
         }
@@ -126,7 +153,7 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)], plan: Opti
     let mut kept = Vec::new();
     for mut named in found {
         shrink_to_merged(context, &mut named);
-        match whole(&named) {
+        match in_pieces(&named).or_else(|| whole(&named)) {
             Some(problem) => context.report(problem),
             None => kept.push(named),
         }
@@ -159,61 +186,6 @@ fn beaten(stronger: &[Named], name: &RoleName) -> Option<usize> {
     })
 }
 
-/// Whether a name of the workbook can hold for each of several appraisals: it states something, or years, for all.
-fn belongs_to_all(name: &RoleName, defined: &DefinedName) -> bool {
-    let along = matches!(name.role, Role::Years | Role::Offsets | Role::Prices | Role::Consumption);
-    name.option.is_none() && defined.scope.is_none() && (along || name.role.is_setting())
-}
-
-/// Where plan and workbook state another base, basis, timing or price basis, the plan counts, and a warning says so.
-fn disagreement(context: &mut Context, planned: &Named, name: &str, at: &SheetRange) {
-    let weighty = [Role::Base, Role::Basis, Role::Timing, Role::PriceBasis];
-    if !weighty.contains(&planned.name.role) || planned.cells().as_ref() == Some(at) {
-        return;
-    }
-    let named = Named { from: name.to_owned(), at: at.clone(), stated: None, ..planned.clone() };
-    let (held, said) = (held(context, &named), held(context, planned));
-    if held.is_empty() || held.eq_ignore_ascii_case(&said) {
-        return;
-    }
-    let message = format!(
-        "the workbook says `{}`, and {} says `{}`: the plan counts",
-        super::cells::shown(&held),
-        planned.from,
-        super::cells::shown(&said)
-    );
-    context.report(
-        Problem::warning("plan-overrides", named.place(), message)
-            .hint("take the role out of the plan to use what the workbook says"),
-    );
-}
-
-/// What the first cell of a role holds, or a plan states, as text.
-pub(super) fn held(context: &mut Context, named: &Named) -> String {
-    let value = match &named.stated {
-        Some(value) => Some(value.clone()),
-        None => {
-            context.grid(&named.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()))
-        }
-    };
-    match value {
-        Some(Value::Text(text)) => text.trim().to_owned(),
-        Some(Value::Number(number) | Value::Date(number)) => number.to_string(),
-        _ => String::new(),
-    }
-}
-
-fn from_plan(context: &mut Context, planned: &Planned) -> Checked<Named> {
-    let (name, from) = (planned.name.clone(), planned.from.clone());
-    match &planned.says {
-        Says::Value(value) => Ok(Named::without_cell(name, from, value.clone())),
-        Says::Cells(text) => {
-            let at = located(context, Place::name(&from), text)?;
-            Ok(Named { name, from, at, scope: None, stated: None })
-        }
-    }
-}
-
 fn from_command_line(context: &mut Context, role: &str, range: &str) -> Checked<Named> {
     let from = format!("--role {role}");
     let place = Place::name(&from);
@@ -224,16 +196,19 @@ fn from_command_line(context: &mut Context, role: &str, range: &str) -> Checked<
     if name.role.info().way == Way::Own {
         return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given").into());
     }
-    Ok(Named { name, from, at: located(context, place, range)?, scope: None, stated: None })
+    Ok(Named::at(name, from, located(context, place, range)?))
 }
 
 /// The cells that a text such as `Sheet1!C7:F7`, `Table1[Works]`, or a defined name, stands for; `place` is where the text
 /// comes from.
-pub(super) fn located(context: &mut Context, place: Place, range: &str) -> Checked<SheetRange> {
+pub(super) fn located(context: &mut Context, place: Place, range: &str) -> Checked<Area> {
     if let Ok(at) = range.parse::<SheetRange>()
         && let Some(sheet) = context.book.sheets.iter().find(|sheet| same_text(&sheet.name, &at.sheet))
     {
-        return Ok(SheetRange { sheet: sheet.name.clone(), ..at });
+        return Ok(SheetRange { sheet: sheet.name.clone(), ..at }.into());
+    }
+    if let Some(pieces) = pieces(context, range) {
+        return joined(place, &pieces);
     }
     let (sheet, wanted) = match range.rsplit_once('!') {
         Some((sheet, wanted)) => (Some(sheet.trim_matches('\'').replace("''", "'")), wanted),
@@ -270,19 +245,81 @@ fn same_text(a: &str, b: &str) -> bool {
     a.to_lowercase() == b.to_lowercase()
 }
 
-/// The one rectangle a name refers to, or why it has none.
-pub(super) fn cells(context: &mut Context, defined: &DefinedName) -> Checked<SheetRange> {
+/// Ranges between commas, such as `Plan!C4:M4,P4:Z4`: a sheet counts until another is named.
+fn pieces(context: &Context, text: &str) -> Option<Vec<SheetRange>> {
+    let mut pieces: Vec<SheetRange> = Vec::new();
+    for spanned in tokens(text) {
+        match spanned.token {
+            Token::Ref(reference) => {
+                let sheet = match &reference.sheet {
+                    Some(sheets) if sheets.is_external() || sheets.last.is_some() => return None,
+                    Some(sheets) => {
+                        context.book.sheets[context.book.sheet_index(&sheets.first)?].name.clone()
+                    }
+                    None => pieces.last()?.sheet.clone(),
+                };
+                pieces.push(SheetRange { sheet, range: reference.range() });
+            }
+            Token::Operator("," | "~") | Token::Space => {}
+            _ => return None,
+        }
+    }
+    (pieces.len() > 1).then_some(pieces)
+}
+
+/// Pieces of one row or column as one area, or why they are none.
+fn joined(place: Place, pieces: &[SheetRange]) -> Checked<Area> {
+    if pieces.len() > MAX_PIECES {
+        let message = format!("refers to {} ranges, allowed {MAX_PIECES}", pieces.len());
+        return Err(Problem::error("name-union", place, message)
+            .hint("put the years side by side on a sheet of their own, and name that")
+            .into());
+    }
+    Area::join(pieces).map_err(|apart| {
+        let why = match apart {
+            Apart::Sheets => "of several sheets, and the cells of a role stand on one",
+            Apart::Lines => "that lie neither in one row nor in one column",
+            Apart::Overlap => "that share cells",
+        };
+        Problem::error("name-union", place, format!("refers to {} ranges {why}", pieces.len()))
+            .hint("name pieces of one row or of one column; give each other row its own stream")
+            .into()
+    })
+}
+
+/// Pieces where one range is needed.
+fn in_pieces(named: &Named) -> Option<Problem> {
+    let role = named.name.role;
+    let along = matches!(
+        role,
+        Role::Years
+            | Role::Offsets
+            | Role::Cost
+            | Role::Benefit
+            | Role::Flow
+            | Role::Damage
+            | Role::Effect
+            | Role::Consumption
+            | Role::Factor
+            | Role::Pv
+            | Role::Rates
+    );
+    (!along && named.area.parts().len() > 1).then(|| {
+        let message = format!("`{}` comes in {} pieces, and one range is needed", role.word(), named.area.parts().len());
+        Problem::error("name-union", named.place(), message)
+            .hint("name one range; only years, offsets, single streams and what is filled along them may come in pieces")
+    })
+}
+
+/// The cells a name refers to, or why it has none.
+pub(super) fn cells(context: &mut Context, defined: &DefinedName) -> Checked<Area> {
     let refuse = |code, message: String, hint: &str| {
         Err(Problem::error(code, Place::name(&defined.name), message).hint(hint).into())
     };
     let again = "let the name refer to one range of cells with $ signs, such as Sheet1!$C$7:$F$7";
     match context.book.resolve(defined) {
-        NameTarget::Cells(at) => Ok(at),
-        NameTarget::Union(parts) => refuse(
-            "name-union",
-            format!("refers to {} separate ranges, which are not joined", parts.len()),
-            "name one range; give each part its own stream, or put the cells side by side",
-        ),
+        NameTarget::Cells(at) => Ok(at.into()),
+        NameTarget::Union(pieces) => joined(Place::name(&defined.name), &pieces),
         NameTarget::Constant(constant) => refuse(
             "name-constant",
             format!("is the constant {constant:?}, and cells are needed"),
@@ -329,7 +366,7 @@ fn changing(context: &mut Context, place: Place, text: &str) -> Problem {
 }
 
 /// The cells of a structured reference, such as `Table1[Works]` or `Table1[[#Headers],[#Data],[Works]]`.
-fn table_cells(context: &Context, place: Place, name: &str, part: &str) -> Checked<SheetRange> {
+fn table_cells(context: &Context, place: Place, name: &str, part: &str) -> Checked<Area> {
     let wrong = |message: String, hint: String| {
         Err(Problem::error("name-table", place.clone(), message).hint(hint).into())
     };
@@ -342,7 +379,7 @@ fn table_cells(context: &Context, place: Place, name: &str, part: &str) -> Check
         return wrong(format!("refers to the table `{name}`, which the workbook does not have"), hint);
     };
     if let Some(range) = table.cells(part, None) {
-        return Ok(SheetRange { sheet: context.book.sheets[table.sheet].name.clone(), range });
+        return Ok(SheetRange { sheet: context.book.sheets[table.sheet].name.clone(), range }.into());
     }
     let shown = super::cells::shown(part);
     let lower = part.to_lowercase();
@@ -383,6 +420,7 @@ pub(super) fn shrink_to_merged(context: &mut Context, named: &mut Named) {
     }
     if context.facts(&named.at.sheet).is_some_and(|facts| facts.merged.contains(&named.at.range)) {
         named.at.range.last = named.at.range.first;
+        named.area = named.at.clone().into();
     }
 }
 

@@ -3,7 +3,7 @@
 use std::collections::{BTreeMap, BTreeSet};
 
 use crate::problem::Problem;
-use crate::references::Cell;
+use crate::references::{Cell, Range};
 use crate::roles::{Role, key};
 
 use super::find::Named;
@@ -46,10 +46,13 @@ impl Split {
 /// Splits the names of a workbook by option.
 pub(super) fn split(context: &mut Context, named: Vec<Named>) -> Split {
     let sheets = option_sheets(&named);
+    let copied = copied(&named, &sheets);
     let mut groups: BTreeMap<String, Group> = BTreeMap::new();
     let mut shared: Vec<Named> = Vec::new();
     for named in named {
         let from_sheet = named.scope.clone().filter(|sheet| sheets.contains(sheet));
+        let from_sheet =
+            from_sheet.or_else(|| copied.contains(&what(&named)).then(|| named.at.sheet.clone()));
         match named.name.option.clone().or(from_sheet) {
             Some(option) => {
                 let group = groups
@@ -87,6 +90,41 @@ fn option_sheets(named: &[Named]) -> BTreeSet<String> {
         own.filter_map(|named| named.scope.as_ref()).collect()
     };
     of(Role::is_stream).intersection(&of(Role::is_output)).map(|sheet| (*sheet).clone()).collect()
+}
+
+/// What a name says, and where it stands.
+type What = (String, Role, Option<String>);
+
+fn what(named: &Named) -> What {
+    (named.at.sheet.clone(), named.name.role, named.name.stream.as_deref().map(key))
+}
+
+/// Names of the whole workbook that belong to a sheet all the same, as other sheets were copied from it: a spreadsheet
+/// program keeps the names of the first sheet for the whole workbook, and gives each copy the same names of its own.
+///
+/// **Returns**: those of sheets that hold both a stream and an output among them, and that have copies with names.
+fn copied(named: &[Named], options: &BTreeSet<String>) -> BTreeSet<What> {
+    let whole = |named: &&Named| {
+        named.scope.is_none() && named.name.option.is_none() && !options.contains(&named.at.sheet)
+    };
+    let own = named.iter().filter(|named| {
+        named.name.option.is_none() && named.scope.as_ref().is_some_and(|scope| options.contains(scope))
+    });
+    let repeated: BTreeSet<(Role, Option<String>, Range)> = own.map(place_of).collect();
+    let kept: Vec<&Named> =
+        named.iter().filter(whole).filter(|named| repeated.contains(&place_of(named))).collect();
+    let both = |sheet: &str| {
+        let has = |test: fn(Role) -> bool| {
+            kept.iter().any(|named| named.at.sheet == sheet && test(named.name.role))
+        };
+        has(Role::is_stream) && has(Role::is_output)
+    };
+    kept.iter().filter(|named| both(&named.at.sheet)).map(|named| what(named)).collect()
+}
+
+/// What a name says, and of which cells, whatever their sheet.
+fn place_of(named: &Named) -> (Role, Option<String>, Range) {
+    (named.name.role, named.name.stream.as_deref().map(key), named.at.range)
 }
 
 /// Adds a name, unless another has the same role and stream: two ranges for one role are a question.

@@ -1,5 +1,6 @@
 //! From defined names to an appraisal: options, years, streams and targets, each problem with its cell.
 
+mod alike;
 mod blocks;
 mod cells;
 mod choices;
@@ -8,6 +9,7 @@ mod coverage;
 mod dynamic;
 mod find;
 mod groups;
+mod planned;
 mod prices;
 mod report;
 mod series;
@@ -26,8 +28,9 @@ use crate::model::{SheetFacts, Workbook};
 use crate::package::Package;
 use crate::planfile::Part;
 use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
-use crate::reading::{Grid, Sheets};
-use crate::references::{Cell, Range, SheetRange};
+use crate::reading::{Grid, ReadCell, Sheets};
+use crate::references::{Area, Cell, Range, SheetRange};
+use crate::roles::Role;
 
 pub(crate) use cells::text_as_number;
 pub(crate) use counted::sum_of;
@@ -66,19 +69,24 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
     if let Some(plan) = options.plan {
         context.problems.extend(plan.problems.iter().cloned());
         context.appraisal = plan.appraisal.clone();
+        context.planned = true;
+        context.lost.extend(&plan.lost);
     }
     let named = find::find(&mut context, options.roles, options.plan);
     let ranges: Vec<SheetRange> =
-        named.iter().filter(|named| !named.too_large()).filter_map(find::Named::cells).collect();
+        named.iter().filter(|named| !named.too_large()).flat_map(find::Named::pieces).collect();
     if let Err(error) = context.sheets.load(&ranges) {
         context.problems.extend(error.problems().iter().cloned());
         return Err(context.ended());
     }
+    let mut sheets: BTreeSet<String> = named.iter().map(|named| named.at.sheet.clone()).collect();
+    sheets.extend(options.plan.iter().flat_map(|plan| plan.elsewhere.clone()));
     let split = groups::split(&mut context, named);
     let built = choices::build(&mut context, &split, options);
     if context.failed() {
         return Err(context.ended());
     }
+    alike::tell(&mut context, &built, &sheets);
     let coverage = coverage::coverage(&mut context, &built);
     if context.failed() {
         return Err(context.ended());
@@ -99,6 +107,10 @@ struct Context<'a> {
     problems: Vec<Problem>,
     /// Which of several appraisals of the workbook this is.
     appraisal: Option<String>,
+    /// There is a plan.
+    planned: bool,
+    /// Roles that the plan gives to cells which are not there.
+    lost: BTreeSet<Role>,
 }
 
 impl<'a> Context<'a> {
@@ -111,7 +123,8 @@ impl<'a> Context<'a> {
         };
         let problems = book.problems.iter().filter(ours).cloned().collect();
         let (facts, settings) = (BTreeMap::new(), BTreeMap::new());
-        Ok(Context { package, book, sheets, facts, settings, problems, appraisal: None })
+        let (appraisal, planned, lost) = (None, false, BTreeSet::new());
+        Ok(Context { package, book, sheets, facts, settings, problems, appraisal, planned, lost })
     }
 
     /// What a sheet holds besides values; nothing where it cannot be read, which is reported.
@@ -147,6 +160,16 @@ impl<'a> Context<'a> {
         }
     }
 
+    /// The cells of an area in order, likewise.
+    fn along(&mut self, area: &Area) -> Option<Vec<(Cell, ReadCell)>> {
+        let mut cells = Vec::new();
+        for piece in area.pieces() {
+            let grid = self.grid(&piece)?;
+            cells.extend(grid.iter().map(|(cell, content)| (cell, content.clone())));
+        }
+        Some(cells)
+    }
+
     fn failed(&self) -> bool {
         self.problems.iter().any(|problem| problem.severity == Severity::Error)
     }
@@ -164,7 +187,8 @@ impl<'a> Context<'a> {
             let sheet = problem.place.sheet.as_deref();
             let index = sheet
                 .map_or(0, |name| 1 + order.iter().position(|known| *known == name).unwrap_or(order.len()));
-            (index, problem.place.range.map(|range| range.first), problem.code, problem.message.clone())
+            let (cell, line) = (problem.place.range.map(|range| range.first), problem.place.line);
+            (index, cell, line, problem.code, problem.message.clone())
         });
         problems.retain(|problem| seen.insert(format!("{problem} {:?}", problem.hint)));
         merge_neighbours(problems)

@@ -124,7 +124,7 @@ fn levels(context: &mut Context, named: &Named, axis: &Axis) -> Option<Given<Lev
         context.report(problem);
         return None;
     }
-    check_aligned(context, &named.at, &named.from, &axis.at);
+    check_aligned(context, &named.area, &named.from, &axis.at);
     let grid = context.grid(&named.at)?;
     let mut levels = Vec::new();
     for (cell, content) in grid.iter() {

@@ -7,7 +7,8 @@ use crate::problem::{Place, Problem};
 use crate::reading::Value;
 
 use super::cells::{number, shown, single};
-use super::find::{Named, held};
+use super::find::Named;
+use super::planned::held;
 use super::{Context, texts};
 
 /// Lowest and highest flat rate of a number cell.

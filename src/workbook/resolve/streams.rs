@@ -4,7 +4,7 @@ use std::collections::BTreeMap;
 
 use crate::appraisal::{Axis, Direction, Effect, Given, Stream, StreamKind};
 use crate::problem::Problem;
-use crate::references::{Cell, SheetRange};
+use crate::references::{Area, Range, SheetRange};
 use crate::roles::{Role, key};
 
 use super::cells::numbers;
@@ -35,7 +35,7 @@ pub(super) fn streams(context: &mut Context, split: &Split, group: &Group, axis:
                     name: named.name.stream.clone().unwrap_or_default(),
                     kind,
                     from: named.from.clone(),
-                    at: named.at.clone(),
+                    at: named.area.clone(),
                     raw,
                     sign: 1.0,
                     unit: 1.0,
@@ -64,7 +64,7 @@ pub(super) fn effects(context: &mut Context, split: &Split, group: &Group, axis:
     for named in own_and_common(split, group, |role| role == Role::Effect) {
         if let Some(raw) = row(context, named, axis) {
             let name = named.name.stream.clone().unwrap_or_default();
-            effects.push(Effect { name, at: named.at.clone(), raw });
+            effects.push(Effect { name, at: named.area.clone(), raw });
         }
     }
     effects
@@ -84,9 +84,8 @@ fn row(context: &mut Context, named: &Named, axis: &Axis) -> Option<Vec<f64>> {
         return None;
     }
     check_merged(context, named);
-    check_aligned(context, &named.at, &named.from, &axis.at);
-    let grid = context.grid(&named.at)?;
-    let read = numbers(context, &grid, &named.from);
+    check_aligned(context, &named.area, &named.from, &axis.at);
+    let read = numbers(context, named)?;
     if read.blanks.len() == read.values.len() {
         context.report(
             Problem::warning("stream-blank", named.place(), "is blank in every year and counts as 0")
@@ -109,12 +108,12 @@ fn row(context: &mut Context, named: &Named, axis: &Axis) -> Option<Vec<f64>> {
 /// Why a range is not as long as the years and in their direction, with the range that would be.
 pub(super) fn wrong_shape(named: &Named, axis: &Axis) -> Option<Problem> {
     let years = axis.labels.len() as u64;
-    if direction(&named.at) == Some(axis.direction) && named.at.range.len() == years {
+    if direction(&named.at) == Some(axis.direction) && named.area.len() == years {
         return None;
     }
     let found = match direction(&named.at) {
-        Some(Direction::Across) => format!("{} cells across", named.at.range.cols()),
-        Some(Direction::Down) => format!("{} cells down", named.at.range.rows()),
+        Some(Direction::Across) => format!("{} cells across", named.area.len()),
+        Some(Direction::Down) => format!("{} cells down", named.area.len()),
         None => format!("{} rows and {} columns", named.at.range.rows(), named.at.range.cols()),
     };
     let way = match axis.direction {
@@ -132,19 +131,23 @@ pub(super) fn wrong_shape(named: &Named, axis: &Axis) -> Option<Problem> {
 }
 
 /// The row (or column) of a range, in the columns (or rows) of the years.
-fn beside_years(at: &SheetRange, axis: &Axis) -> SheetRange {
-    let mut fixed = axis.at.range;
-    match axis.direction {
-        Direction::Across => (fixed.first.row, fixed.last.row) = (at.range.first.row, at.range.first.row),
-        Direction::Down => (fixed.first.col, fixed.last.col) = (at.range.first.col, at.range.first.col),
-    }
-    SheetRange { sheet: at.sheet.clone(), range: fixed }
+fn beside_years(at: &SheetRange, axis: &Axis) -> Area {
+    let beside = |mut piece: Range| {
+        match axis.direction {
+            Direction::Across => (piece.first.row, piece.last.row) = (at.range.first.row, at.range.first.row),
+            Direction::Down => (piece.first.col, piece.last.col) = (at.range.first.col, at.range.first.col),
+        }
+        SheetRange { sheet: at.sheet.clone(), range: piece }
+    };
+    let pieces: Vec<SheetRange> = axis.at.parts().iter().map(|piece| beside(*piece)).collect();
+    Area::join(&pieces).unwrap_or_else(|_| axis.at.clone())
 }
 
 /// Only the first cell of a merged area holds anything; the others would count as 0 unnoticed.
 fn check_merged(context: &mut Context, named: &Named) {
     let Some(facts) = context.facts(&named.at.sheet) else { return };
-    for merged in facts.merged.iter().filter(|merged| merged.intersects(&named.at.range)) {
+    let touches = |merged: &Range| named.area.parts().iter().any(|part| part.intersects(merged));
+    for merged in facts.merged.iter().filter(|merged| touches(merged)) {
         context.report(
             Problem::error(
                 "merged",
@@ -188,7 +191,7 @@ fn add_settings(context: &mut Context, split: &Split, group: &Group, stream: &mu
 /// A cost stream wholly negative with nothing declared is a question, not a benefit.
 fn check_sign(context: &mut Context, stream: &Stream, signs: Signs) {
     let has = |sign: f64| stream.raw.iter().any(|flow| flow * sign > 0.0);
-    let place = || crate::problem::Place::cells(&stream.at.sheet, stream.at.range).called(&stream.from);
+    let place = || crate::problem::Place::area(&stream.at).called(&stream.from);
     let wholly_negative = has(-1.0) && !has(1.0);
     match stream.kind {
         StreamKind::Cost if wholly_negative && !signs.declared => context.report(
@@ -234,7 +237,7 @@ fn check_names(context: &mut Context, streams: &[Stream]) {
             context.report(
                 Problem::error(
                     "duplicate-stream",
-                    place(&stream.at, Cell { ..stream.at.range.first }, &stream.from),
+                    place(&stream.at.hull(), stream.at.nth(0), &stream.from),
                     format!("the stream `{}` is also {} [{}]", stream.name, twin.at, twin.from),
                 )
                 .hint("give each stream its own name"),

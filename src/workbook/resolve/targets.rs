@@ -4,13 +4,13 @@ use crate::appraisal::{Axis, Choice, Held, StreamKind, Target, TargetRole};
 use crate::model::SheetFacts;
 use crate::problem::{Place, Problem};
 use crate::reading::{ReadCell, Value};
-use crate::references::{Cell, Range, SheetRange};
+use crate::references::{Area, Cell, Range, SheetRange};
 use crate::roles::{Role, key};
 
 use super::Context;
 use super::cells::one;
 use super::choices::stream_names;
-use super::counted::{check_aligned, overlap};
+use super::counted::check_aligned;
 use super::find::Named;
 use super::groups::Split;
 use super::streams::wrong_shape;
@@ -98,7 +98,7 @@ fn target(context: &mut Context, named: &Named, choice: &Choice, axis: &Axis) ->
             context.report(problem);
             return None;
         }
-        check_aligned(context, &named.at, &named.from, &axis.at);
+        check_aligned(context, &named.area, &named.from, &axis.at);
     } else if !single {
         let first = SheetRange { sheet: named.at.sheet.clone(), range: one(named.at.range.first) };
         context.report(
@@ -111,9 +111,9 @@ fn target(context: &mut Context, named: &Named, choice: &Choice, axis: &Axis) ->
         );
         return None;
     }
-    let grid = context.grid(&named.at)?;
-    let (held, formats) = grid.iter().map(|(_, cell)| (held(cell), cell.format.clone())).unzip();
-    Some(Target { role, from: named.from.clone(), at: named.at.clone(), held, formats })
+    let cells = context.along(&named.area)?;
+    let (held, formats) = cells.iter().map(|(_, cell)| (held(cell), cell.format.clone())).unzip();
+    Some(Target { role, from: named.from.clone(), at: named.area.clone(), held, formats })
 }
 
 /// The stream that a target is about: none for the net, nothing after a report.
@@ -177,8 +177,8 @@ pub(super) fn check(context: &mut Context, choices: &[Choice], axes: &[Axis]) {
     let inputs = inputs(choices, axes);
     let targets: Vec<&Target> = choices.iter().flat_map(|choice| &choice.targets).collect();
     for (i, target) in targets.iter().enumerate() {
-        let place = || Place::cells(&target.at.sheet, target.at.range).called(&target.from);
-        if let Some(other) = targets[..i].iter().find(|other| overlap(&other.at, &target.at)) {
+        let place = || Place::area(&target.at).called(&target.from);
+        if let Some(other) = targets[..i].iter().find(|other| other.at.intersects(&target.at)) {
             context.report(
                 Problem::error(
                     "target-overlap",
@@ -188,7 +188,7 @@ pub(super) fn check(context: &mut Context, choices: &[Choice], axes: &[Axis]) {
                 .hint("give each result its own cells"),
             );
         }
-        if let Some((at, from)) = inputs.iter().find(|(at, _)| overlap(at, &target.at)) {
+        if let Some((at, from)) = inputs.iter().find(|(at, _)| at.intersects(&target.at)) {
             context.report(
                 Problem::error(
                     "target-overlap",
@@ -207,9 +207,10 @@ pub(super) fn check(context: &mut Context, choices: &[Choice], axes: &[Axis]) {
 }
 
 /// Every range that is read.
-fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(SheetRange, String)> {
-    let mut inputs: Vec<(SheetRange, String)> =
+fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(Area, String)> {
+    let mut along: Vec<(Area, String)> =
         axes.iter().map(|axis| (axis.at.clone(), "the years".to_owned())).collect();
+    let mut inputs: Vec<(SheetRange, String)> = Vec::new();
     for choice in choices {
         inputs.extend(choice.base.at.iter().map(|at| (at.clone(), choice.base.from.clone())));
         inputs.extend(choice.basis.at.iter().map(|at| (at.clone(), choice.basis.from.clone())));
@@ -224,10 +225,10 @@ fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(SheetRange, String)> {
         for given in welfare.elasticity.iter().chain(&welfare.reference) {
             inputs.extend(given.at.iter().map(|at| (at.clone(), given.from.clone())));
         }
-        inputs.extend(welfare.consumption.iter().map(|path| (path.at.clone(), path.from.clone())));
-        inputs.extend(choice.effects.iter().map(|effect| (effect.at.clone(), effect.name.clone())));
+        along.extend(welfare.consumption.iter().map(|path| (path.at.clone(), path.from.clone())));
+        along.extend(choice.effects.iter().map(|effect| (effect.at.clone(), effect.name.clone())));
         for stream in &choice.streams {
-            inputs.push((stream.at.clone(), stream.from.clone()));
+            along.push((stream.at.clone(), stream.from.clone()));
             inputs.extend(
                 stream.basis.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))),
             );
@@ -245,13 +246,14 @@ fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(SheetRange, String)> {
                 .extend(stream.tail.iter().filter_map(|given| Some((given.at.clone()?, given.from.clone()))));
         }
     }
-    inputs
+    along.extend(inputs.into_iter().map(|(at, from)| (at.into(), from)));
+    along
 }
 
 /// Cells that cannot be written one by one.
 fn refusals(target: &Target, facts: &SheetFacts) -> Vec<Problem> {
     let mut found = Vec::new();
-    for cell in target.at.range.cells() {
+    for cell in target.at.cells() {
         let mut refuse = |code, message: String, hint: &str| {
             let place = Place::cells(&target.at.sheet, one(cell)).called(&target.from);
             found.push(Problem::error(code, place, message).hint(hint));
@@ -310,26 +312,27 @@ fn table_edge(table: &crate::model::Table, cell: Cell) -> Option<&'static str> {
 /// What a person should know of the cells that are filled.
 fn warnings(target: &Target, facts: &SheetFacts) -> Vec<Problem> {
     let mut found = Vec::new();
+    let around = target.at.hull().range;
     let mut warn = |code, range: Range, message: String, hint: &str| {
         let place = Place::cells(&target.at.sheet, range).called(&target.from);
         found.push(Problem::warning(code, place, message).hint(hint));
     };
     if facts.protected {
         let hint = "the cells are filled all the same; unprotect the sheet to edit them by hand";
-        warn("protected", target.at.range, "is on a protected sheet".to_owned(), hint);
+        warn("protected", around, "is on a protected sheet".to_owned(), hint);
     }
-    if target.at.range.cells().any(|cell| facts.row_hidden(cell.row) || facts.column_hidden(cell.col)) {
+    if target.at.cells().any(|cell| facts.row_hidden(cell.row) || facts.column_hidden(cell.col)) {
         let hint = "show the rows or columns to see what is filled";
-        warn("hidden", target.at.range, "has cells in hidden rows or columns".to_owned(), hint);
+        warn("hidden", around, "has cells in hidden rows or columns".to_owned(), hint);
     }
-    let ruled = |range: &Range| range.intersects(&target.at.range);
+    let ruled = |range: &Range| target.at.parts().iter().any(|part| part.intersects(range));
     if let Some(rule) =
         facts.validations.iter().find(|rule| rule.kind != "none" && rule.ranges.iter().any(ruled))
     {
         let hint = "check that the rule allows the results";
-        warn("validation", target.at.range, format!("has a validation rule ({})", rule.kind), hint);
+        warn("validation", around, format!("has a validation rule ({})", rule.kind), hint);
     }
-    for (cell, format) in target.at.range.cells().zip(&target.formats) {
+    for (cell, format) in target.at.cells().zip(&target.formats) {
         if format.as_deref() == Some("@") {
             let hint = "give the cell a number format: a formula typed into it would show as text";
             warn("text-format", one(cell), "is formatted as text".to_owned(), hint);

@@ -102,14 +102,13 @@ fn consumption(
         context.report(problem);
         return None;
     }
-    check_aligned(context, &named.at, &named.from, &axis.at);
+    check_aligned(context, &named.area, &named.from, &axis.at);
     let unit = split.about(group, Role::Unit, Role::Consumption.word());
     let unit = unit.map_or(Some(1.0), |named| settings::unit(context, named))?;
-    let grid = context.grid(&named.at)?;
     let mut raw = Vec::new();
-    for (cell, content) in grid.iter() {
+    for (cell, content) in context.along(&named.area)? {
         let place = place(&named.at, cell, &named.from);
-        match number(content, place.clone()) {
+        match number(&content, place.clone()) {
             Ok(Some(level)) if level > 0.0 => raw.push(level),
             Ok(level) => {
                 let found = level.map_or_else(|| "is blank".to_owned(), |level| format!("is {level}"));
@@ -122,5 +121,5 @@ fn consumption(
         }
     }
     let whole = raw.len() == axis.labels.len();
-    whole.then(|| Consumption { at: named.at.clone(), from: named.from.clone(), raw, unit })
+    whole.then(|| Consumption { at: named.area.clone(), from: named.from.clone(), raw, unit })
 }

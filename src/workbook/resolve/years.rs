@@ -28,7 +28,7 @@ pub(super) fn direction(at: &SheetRange) -> Option<Direction> {
 
 /// Reads the years (or the offsets) of a role, or reports why they are none.
 pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
-    let count = named.at.range.len();
+    let count = named.area.len();
     let Some(direction) = direction(&named.at).filter(|_| (2..=MAX_YEARS).contains(&count)) else {
         let (rows, cols) = (named.at.range.rows(), named.at.range.cols());
         context.report(
@@ -41,10 +41,11 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
         );
         return None;
     };
-    let grid = context.grid(&named.at)?;
+    let cells = context.along(&named.area)?;
     let date1904 = context.book.date1904;
     let mut labels: Vec<Option<Label>> = Vec::new();
-    for (cell, content) in grid.iter() {
+    for (cell, content) in cells {
+        let content = &content;
         let place = Place::cells(&named.at.sheet, one(cell)).called(&named.from);
         let read = if named.name.role == Role::Offsets {
             offset(content, place.clone())
@@ -72,7 +73,7 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
     // A faulty year ends the run, but not before the flows beside it are checked too.
     let any = labels.iter().flatten().next()?.clone();
     let labels = labels.into_iter().map(|label| label.unwrap_or_else(|| any.clone())).collect();
-    Some(Axis { at: named.at.clone(), direction, labels })
+    Some(Axis { at: named.area.clone(), direction, labels })
 }
 
 /// Whether a cell is one of a table's headings.

@@ -8,7 +8,7 @@ use crate::appraisal::{Held, Label, TargetRole};
 use crate::formulas::{absolute, nth, refer, refer_cell};
 use crate::layout::{LabelValue, Layout, label_value};
 use crate::patch::Cached;
-use crate::references::{Cell, Range, SheetRange, quote_sheet};
+use crate::references::{Area, Cell, Range, SheetRange, quote_sheet};
 use crate::writer::{Sheet, Style};
 
 /// The row of column headings.
@@ -223,7 +223,7 @@ impl<'a> Maker<'a> {
             let heading = format!("{} ({})", stream.name, side_words(stream.kind));
             sheet.text(at.top, col::FLOWS + s as u32, Style::Heading, heading);
             for (i, &raw) in stream.raw.iter().enumerate() {
-                let text = refer_cell(self.home, &stream.at.sheet, nth(stream.at.range, i));
+                let text = refer_cell(self.home, &stream.at.sheet, stream.at.nth(i));
                 let row = at.years + i as u32;
                 sheet.formula(row, col::FLOWS + s as u32, Style::Money, text, Cached::Number(raw));
             }
@@ -258,11 +258,11 @@ impl<'a> Maker<'a> {
         let label = &axis.labels[i];
         let row = self.sections[c].years + i as u32;
         let (value, style) = label_live(label, self.input.appraisal.date1904);
-        let source = refer_cell(self.home, &axis.at.sheet, nth(axis.at.range, i));
+        let source = refer_cell(self.home, &axis.at.sheet, axis.at.nth(i));
         let target = self.factor_target(c).map(|t| &choice.targets[t]);
         let factors = self.layout.factors(c);
-        let at = target.map_or(&factors, |t| &t.at);
-        let cell = nth(at.range, i);
+        let at = target.map_or_else(|| Area::from(factors.clone()), |t| t.at.clone());
+        let cell = at.nth(i);
         let mut line = Line::factor(place(&at.sheet, cell), Live { formula: source, value }, style);
         let rebuilt = self.rebuilt(c);
         let label_cell = absolute_cell(row, col::WHAT);

@@ -3,9 +3,9 @@
 use super::AuditInput;
 use super::lines::{AGREES, DIFFERS};
 use crate::appraisal::Covered;
-use crate::formulas::{one, refer};
+use crate::formulas::{one, refer, refer_area};
 use crate::patch::Cached;
-use crate::references::{Cell, Range, SheetRange, quote_sheet};
+use crate::references::{Cell, Range, SheetRange};
 use crate::writer::{Sheet, Style};
 
 /// The row of column headings.
@@ -52,7 +52,7 @@ pub(super) fn sheet(input: &AuditInput<'_>) -> Coverage {
 
 /// One row of numbers.
 fn row(sheet: &mut Sheet, at: u32, covered: &Covered) {
-    sheet.text(at, 0, Style::Text, format!("{}!{}", quote_sheet(&covered.at.sheet), covered.at.range));
+    sheet.text(at, 0, Style::Text, covered.at.to_string());
     sheet.text(at, 1, Style::Wrapped, &covered.heading);
     let valued = !covered.roles.is_empty();
     let role = if valued { covered.roles.join("; ") } else { "not valued".to_owned() };
@@ -64,7 +64,7 @@ fn row(sheet: &mut Sheet, at: u32, covered: &Covered) {
         return;
     }
     sheet.number(at, 3, Style::Money, covered.total);
-    let sum = format!("SUM({})", refer(&sheet.name, &covered.at));
+    let sum = format!("SUM({})", refer_area(&sheet.name, &covered.at));
     sheet.formula(at, 4, Style::Money, sum, Cached::Number(covered.total));
     let cell = |col| Cell { row: at, col }.to_string();
     let text = format!("ABS({}-{})", cell(4), cell(3));

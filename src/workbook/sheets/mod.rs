@@ -77,7 +77,7 @@ pub struct Meta {
     pub plan: Option<(String, String)>,
     /// Which of several appraisals of the workbook this is.
     pub appraisal: Option<String>,
-    /// SHA-256 of what was asked for: [`FillRequest::sha256`](crate::shelf::FillRequest::sha256).
+    /// SHA-256 of what was asked for: [`FillRequest::sha256`](crate::fill::FillRequest::sha256).
     pub request_sha256: String,
     /// The version of hence.
     pub version: String,

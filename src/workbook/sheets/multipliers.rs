@@ -55,8 +55,8 @@ impl Maker<'_> {
         let axis = &self.input.appraisal.axes[choice.axis];
         let label = &axis.labels[i];
         let (value, style) = label_live(label, self.input.appraisal.date1904);
-        let source = refer_cell(self.home, &axis.at.sheet, nth(axis.at.range, i));
-        let cells = self.layout.multipliers(c, s).unwrap_or_else(|| axis.at.clone());
+        let source = refer_cell(self.home, &axis.at.sheet, axis.at.nth(i));
+        let cells = self.layout.multipliers(c, s).unwrap_or_else(|| axis.at.hull());
         let cell = nth(cells.range, i);
         let mut line = Line::factor(place(&cells.sheet, cell), Live { formula: source, value }, style);
         let years = years_formula(&absolute_cell(row, col::WHAT), label, choice, self.home);

@@ -46,7 +46,7 @@ impl Maker<'_> {
     fn own_factor(&self, c: usize, s: usize, i: usize) -> Line {
         let axis = &self.input.appraisal.axes[self.input.appraisal.choices[c].axis];
         let (value, style) = label_live(&axis.labels[i], self.input.appraisal.date1904);
-        let source = refer_cell(self.home, &axis.at.sheet, nth(axis.at.range, i));
+        let source = refer_cell(self.home, &axis.at.sheet, axis.at.nth(i));
         let factors = self.layout.stream_factors(c, s);
         let cell = nth(factors.range, i);
         let mut line = Line::factor(place(&factors.sheet, cell), Live { formula: source, value }, style);

@@ -76,7 +76,7 @@ pub(super) fn section(page: &mut Page, input: &AuditInput<'_>, own: Option<&str>
         let differs = format!("IF({}=\"{VERDICT_AGREES}\",0,1)", at(TEXT, page.row));
         let count = |verdict: &str| Cached::Number(f64::from(u8::from(verdict != VERDICT_AGREES)));
         page.sheet.text(page.row, 0, Style::Wrapped, &sibling.name);
-        page.sheet.formula(page.row, COUNT, Style::Year, differs, cached(sibling, count));
+        page.sheet.formula(page.row, COUNT, Style::Result, differs, cached(sibling, count));
         page.sheet.formula(
             page.row,
             TEXT,

@@ -3,7 +3,7 @@
 use super::checks::{Maker, absolute_cell, column, place, tolerance};
 use super::lines::{Line, Live, col};
 use super::rebuild::constant;
-use crate::formulas::{nth, refer, refer_cell};
+use crate::formulas::{refer, refer_cell};
 use crate::outcome::ExactValue;
 use crate::patch::Cached;
 use crate::writer::{MAX_FORMULA, Sheet, Style};
@@ -49,7 +49,7 @@ impl Maker<'_> {
         sheet.text(at.top, into, Style::Heading, "consumption");
         sheet.columns(into, into, 14.0);
         for (i, level) in value.consumption.iter().enumerate() {
-            let cell = refer_cell(self.home, &path.at.sheet, nth(path.at.range, i));
+            let cell = refer_cell(self.home, &path.at.sheet, path.at.nth(i));
             let text = if path.unit == 1.0 { cell } else { format!("{}*{cell}", constant(path.unit)) };
             sheet.formula(at.years + i as u32, into, Style::Money, text, Cached::Number(*level));
         }
@@ -74,7 +74,7 @@ impl Maker<'_> {
         };
         let mut row = self.sections[c].welfare;
         let mut add = |what: &str, recorded: f64, allowed: f64, rebuilt: Option<Live>| {
-            let at = place(&path.at.sheet, path.at.range.first);
+            let at = place(&path.at.sheet, path.at.nth(0));
             let mut line = Line::cell(at, what, Live::constant(recorded), None, allowed);
             line.rebuilt = rebuilt;
             lines.push((row, line));

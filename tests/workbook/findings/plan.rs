@@ -91,7 +91,8 @@ impl Plan {
         Plan { more: (cells.to_owned(), names.to_owned()), ..self }
     }
 
-    fn flows(i: usize) -> (f64, f64) {
+    /// Cost and benefit of year i.
+    pub fn flows(i: usize) -> (f64, f64) {
         let cost = if i == 0 { 1000.0 } else { 20.0 };
         (cost, if i == 0 { 0.0 } else { 40.0 + 0.25 * i as f64 })
     }

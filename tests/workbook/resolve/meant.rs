@@ -146,3 +146,80 @@ fn years_in_the_headings_of_a_table_are_told_from_mistyped_ones() {
     assert_eq!(found.place.to_string(), "Plan!B4 [hence_years]");
     assert!(found.hint.as_deref().unwrap_or_default().contains("outside the table"), "{found:?}");
 }
+
+/// The plain appraisal with a subtotal between its years.
+fn in_pieces() -> Small {
+    let cells = "A1: 'Base | 2025\nA2: 'Basis | '3.5%\nA4: 'Year | 2025 | 2026 | 'Sum | 2027\n\
+        A5: 'Works | 100 | 50 | 150 | 25\nA9: 'NPV";
+    Small::default().sheet("Plan", cells).names("hence_base B1, hence_basis B2, hence_npv B9")
+}
+
+#[test]
+fn pieces_of_one_row_are_one_stream() {
+    let read = in_pieces()
+        .raw_name("hence_years", "Plan!$B$4:$C$4,Plan!$E$4")
+        .raw_name("hence_cost_works", "Plan!$E$5,Plan!$B$5:$C$5")
+        .resolved();
+    assert_eq!(read.axes[0].at.to_string(), "Plan!B4:C4,E4");
+    assert_eq!(read.choices[0].streams[0].raw, [100.0, 50.0, 25.0], "in the order of the sheet");
+    // The subtotal is no part of the row.
+    let works = read.coverage.iter().find(|row| row.heading == "Works").expect("covered");
+    assert_eq!((works.at.to_string(), works.total), ("Plan!B5:C5,E5".to_owned(), 175.0));
+}
+
+#[test]
+fn roles_on_the_command_line_come_in_pieces_too() {
+    for years in ["Plan!B4:C4,Plan!E4", "Plan!$B$4:$C$4,E4", "'Plan'!B4,C4,E4"] {
+        let roles = [("years", years), ("cost_works", "Plan!B5:C5,E5")];
+        let roles = roles.map(|(role, range)| (role.to_owned(), range.to_owned()));
+        let read = in_pieces().resolve_with(&Options { roles: &roles, ..Options::default() });
+        let read = read.unwrap_or_else(|problems| panic!("{}", lines(&problems).join("\n")));
+        assert_eq!(read.axes[0].at.to_string(), "Plan!B4:C4,E4");
+        assert_eq!(read.choices[0].streams[0].at.to_string(), "Plan!B5:C5,E5");
+    }
+}
+
+#[test]
+fn pieces_that_are_no_row_or_column_are_refused() {
+    let refused = |name: &str, text: &str| {
+        let small = in_pieces()
+            .raw_name("hence_years", "Plan!$B$4:$C$4,Plan!$E$4")
+            .raw_name("hence_cost_works", "Plan!$B$5:$C$5,Plan!$E$5");
+        let problems = small.raw_name(name, text).resolve_with(&Options::default()).expect_err(text);
+        let found = problems.iter().find(|problem| problem.place.name.as_deref() == Some(name)).expect(text);
+        assert!(found.hint.is_some(), "{text}");
+        format!("{}: {}", found.code, found.message)
+    };
+    for (text, why) in [
+        ("Plan!$B$6:$C$6,Plan!$E$7", "neither in one row nor in one column"),
+        ("Plan!$B$6:$C$7,Plan!$E$6:$E$7", "neither in one row nor in one column"),
+        ("Plan!$B$6:$C$6,Plan!$C$6", "that share cells"),
+        ("Plan!$B$6,Plan!$D$6", "has 2 cells across, allowed are 3 across"),
+    ] {
+        let found = refused("hence_benefit_gain", text);
+        assert!(found.contains(why), "{text}: {found}");
+    }
+    // One cell is needed, or labels beside the numbers.
+    assert!(refused("hence_ratio", "Plan!$B$10,Plan!$D$10").starts_with("name-union"));
+    assert!(refused("hence_shared", "Plan!$B$10,Plan!$D$10").starts_with("name-union"));
+    let many: Vec<String> = (0..101).map(|i| format!("Plan!$A${}", 2 * i + 20)).collect();
+    assert!(refused("hence_benefit_gain", &many.join(",")).contains("101 ranges, allowed 100"));
+}
+
+#[test]
+fn a_stream_in_other_cells_than_the_years_is_told_where_it_should_be() {
+    let small = in_pieces()
+        .raw_name("hence_years", "Plan!$B$4:$C$4,Plan!$E$4")
+        .raw_name("hence_cost_works", "Plan!$B$5:$D$5");
+    let read = small.resolved();
+    assert_eq!(crate::small::codes(&read.problems), ["misaligned Plan!B5:D5 [hence_cost_works]"]);
+    let whole = in_pieces()
+        .raw_name("hence_years", "Plan!$B$4:$C$4,Plan!$E$4")
+        .raw_name("hence_cost_works", "Plan!$B$5:$E$5");
+    let problems = whole.resolve_with(&Options::default()).expect_err("four cells for three years");
+    assert!(
+        lines(&problems).iter().any(|line| line.contains("refer to Plan!B5:C5,E5")),
+        "{:?}",
+        lines(&problems)
+    );
+}

@@ -149,3 +149,66 @@ fn settings_reach_the_option_they_are_named_for() {
     let uplifts: Vec<f64> = read.choices.iter().map(|choice| choice.streams[0].uplift.value).collect();
     assert_eq!(uplifts, [0.1, 0.2]);
 }
+
+/// An option's sheet with its own years, as a spreadsheet program copies it: the first keeps the names of the workbook.
+const WHOLE: &str = "hence_years B4:D4, hence_cost_works B5:D5, hence_npv B9";
+
+#[test]
+fn names_of_the_workbook_belong_to_the_sheet_that_others_were_copied_from() {
+    let read = Small::default()
+        .sheet("Inputs", "A1: 'Base | 2025\nA2: 'Basis | '3.5%")
+        .names("hence_base B1, hence_basis B2")
+        .sheet("Pumps", OPTION)
+        .names(WHOLE)
+        .sheet("Wells", &OPTION.replace("100", "70"))
+        .own_names(WHOLE)
+        .sheet("Dams", &OPTION.replace("100", "900"))
+        .own_names(WHOLE)
+        .resolved();
+    assert_eq!(names(&read), ["Pumps", "Wells", "Dams"]);
+    let flows: Vec<f64> = read.choices.iter().map(|choice| choice.streams[0].raw[0]).collect();
+    assert_eq!(flows, [100.0, 70.0, 900.0]);
+    assert_eq!(read.choices[0].targets[0].at.to_string(), "Pumps!B9");
+}
+
+#[test]
+fn a_stream_of_the_workbook_in_other_cells_than_the_copies_is_still_a_question() {
+    let moved = "A4: 'Year | 2025 | 2026 | 2027\nA6: 'Works | 100 | 50 | 25\nA9: 'NPV | ";
+    let found = Small::default()
+        .sheet("Inputs", "A1: 'Base | 2025\nA2: 'Basis | '3.5%")
+        .names("hence_base B1, hence_basis B2")
+        .sheet("Pumps", moved)
+        .names("hence_years B4:D4, hence_cost_works B6:D6, hence_npv B9")
+        .sheet("Wells", OPTION)
+        .own_names(WHOLE)
+        .problems();
+    assert!(found.contains(&"loose-stream Pumps!B6:D6 [hence_cost_works]".to_owned()), "{found:?}");
+}
+
+#[test]
+fn sheets_laid_out_alike_without_names_are_told() {
+    let two = |other: &str| {
+        Small::default()
+            .sheet("Inputs", "A1: 'Base | 2025\nA2: 'Basis | '3.5%")
+            .names("hence_base B1, hence_basis B2")
+            .sheet("Pumps", OPTION)
+            .names(WHOLE)
+            .sheet("Deep wells", other)
+    };
+    let alike = two(&OPTION.replace("100", "70"));
+    assert_eq!(alike.problems(), ["sheet-alike 'Deep wells'!B5:D5"]);
+    let read = alike.resolved();
+    let hint = read.problems[0].hint.clone().unwrap_or_default();
+    assert!(read.problems[0].message.contains("`Pumps`") && hint.contains("__deep_wells"), "{hint}");
+    // Other years, another heading, no numbers, or names of their own.
+    for other in [
+        OPTION.replace("2026", "2030"),
+        OPTION.replace("'Works", "'Pipes"),
+        OPTION.replace("100 | 50 | 25", ""),
+        OPTION.replace("50", "'n/a"),
+    ] {
+        assert_eq!(two(&other).problems(), [""; 0], "{other}");
+    }
+    let own = two(OPTION).names("hence_pv_works B8");
+    assert_eq!(own.problems(), [""; 0], "a sheet with a name is no sheet left out");
+}

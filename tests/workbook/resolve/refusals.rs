@@ -9,7 +9,7 @@ use crate::small::Small;
 #[test]
 fn targets_that_names_do_not_pin_down() {
     for (text, code) in [
-        ("Plan!$B$7:$C$7,Plan!$D$7", "name-union"),
+        ("Plan!$B$7:$C$7,Plan!$E$8", "name-union"),
         ("OFFSET(Plan!$B$7,0,0,1,3)", "name-dynamic"),
         ("INDIRECT(\"Plan!B7:D7\")", "name-dynamic"),
         ("Plan!B7:D7", "name-relative"),

@@ -52,7 +52,8 @@ pub fn findings(seen: &Seen, rows: &mut Vec<Series>, known: impl Fn(&SheetRange)
         let found = |cell: &Compared| {
             findings.iter().any(|finding: &Finding| finding.place.holds(&cell.at)) || known(&cell.at)
         };
-        if let Some(total) = total(seen, c, rows, found) {
+        // A reading that is more likely met by chance than not says nothing.
+        if let Some(total) = total(seen, c, rows, found).filter(|total| total.chance < 0.5) {
             findings.push(of_total(seen, &total));
             rows.extend(total.rows);
         }
@@ -72,7 +73,7 @@ fn of_rows(seen: &Seen, rows: &mut Vec<Series>, known: &impl Fn(&SheetRange) -> 
     all.extend(implied_rows(seen).into_iter().filter(|row| !follows(row, rows)));
     for row in &mut all {
         let ranges = row.ranges.clone();
-        row.points.retain(|p| !known(&cell_of(&ranges[p.range], p.index)));
+        row.points.retain(|p| !known(&cell_of(&ranges[p.range].clone().into(), p.index)));
     }
     let read = |row: &Series| {
         let known = Known::of(seen, row);
@@ -117,10 +118,13 @@ fn exact(shown: &Shown) -> bool {
     }
 }
 
-/// A row with the factors that its blank and waiting cells would have.
+/// A row with the factors that its blank and waiting cells would have, and with all digits of those that were rounded.
 fn completed(seen: &Seen, row: &Series, reading: &Reading) -> Series {
     let outcome = &seen.outcomes[row.users[0].0];
     let mut row = row.clone();
+    for point in row.points.iter_mut().filter(|point| point.slack > 0.0) {
+        point.found = reading.factor(point).unwrap_or(point.found);
+    }
     for (index, t) in outcome.offsets.iter().enumerate() {
         let point =
             Point { range: 0, index, t: *t, declared: outcome.factors[index], found: 0.0, slack: 0.0 };
@@ -225,7 +229,7 @@ fn of_mixed(seen: &Seen, row: &Series, known: &Known, found: &Mixed) -> Finding 
     let first = &row.ranges[0];
     let beside = row.ranges.iter().filter(|range| range.sheet == first.sheet);
     let cells: Vec<SheetRange> =
-        beside.flat_map(|range| wrong.iter().map(|&index| cell_of(range, index))).collect();
+        beside.flat_map(|range| wrong.iter().map(|&index| cell_of(&range.clone().into(), index))).collect();
     let effect = effect(seen, row);
     let said = words::of_mixed(seen, row, found);
     let place = span(&cells).unwrap_or_else(|| place(row)).called(&row.called);
@@ -248,7 +252,7 @@ fn some_off(seen: &Seen, row: &Series, off: &[usize]) -> Finding {
 
 /// A row that nothing gives. Present values over flows are factors only if they look like such.
 fn unknown(seen: &Seen, row: &Series) -> Finding {
-    let near = row.points.iter().all(|p| (0.2..=5.0).contains(&(p.found / p.declared)));
+    let near = row.points.iter().all(|p| p.found > 0.0 && p.found < 1.6);
     let falls = row.points.windows(2).filter(|pair| pair[1].found <= pair[0].found).count();
     let like = near && (row.ranges.len() > 1 || 2 * falls > row.points.len());
     let kind = if row.source != Source::Present || like { Kind::NoKnownRate } else { Kind::Differs };
@@ -271,7 +275,12 @@ fn with(row: &Series, factor: impl Fn(&Point) -> Option<f64>) -> Vec<Point> {
 fn place(row: &Series) -> Place {
     let first = &row.ranges[0];
     let mut range = first.range;
-    for other in row.ranges.iter().skip(1).filter(|other| other.sheet == first.sheet) {
+    let mut others: Vec<&SheetRange> = row.ranges.iter().filter(|other| other.sheet == first.sheet).collect();
+    others.sort();
+    // Those before the first range join it from the nearest on.
+    let at = others.iter().position(|other| *other == first).unwrap_or(0);
+    let (before, after) = others.split_at(at);
+    for other in before.iter().rev().chain(after) {
         let hull = range.hull(&other.range);
         if hull.len() == range.len() + other.range.len() {
             range = hull;

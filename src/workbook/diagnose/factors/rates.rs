@@ -15,8 +15,9 @@ pub fn rates_rows(seen: &Seen) -> Vec<Series> {
         for target in choice.targets.iter().filter(|target| target.role == TargetRole::Rates) {
             let held: Option<Vec<f64>> = target.held.iter().map(Held::number).collect();
             let Some(rates) = held.filter(|_| outcome.forward.iter().all(Option::is_some)) else { continue };
-            if let Some(row) =
-                rows.iter_mut().find(|row| row.ranges[0] == target.at && row.curve.as_ref() == &outcome.curve)
+            if let Some(row) = rows
+                .iter_mut()
+                .find(|row| row.ranges[0] == target.at.hull() && row.curve.as_ref() == &outcome.curve)
             {
                 row.users.push((c, None));
                 continue;
@@ -30,7 +31,7 @@ pub fn rates_rows(seen: &Seen) -> Vec<Series> {
             };
             rows.push(Series {
                 source: Source::Rates,
-                ranges: vec![target.at.clone()],
+                ranges: vec![target.at.hull()],
                 called: target.from.clone(),
                 users: vec![(c, None)],
                 curve: Rc::new(outcome.curve.clone()),

@@ -90,7 +90,7 @@ impl Series {
 
     /// The cell of a point.
     pub fn cell(&self, point: &Point) -> SheetRange {
-        cell_of(&self.ranges[point.range], point.index)
+        cell_of(&self.ranges[point.range].clone().into(), point.index)
     }
 
     /// How far a factor may be from what a law gives.
@@ -205,7 +205,7 @@ fn series(
     });
     Series {
         source,
-        ranges: vec![target.at.clone()],
+        ranges: vec![target.at.hull()],
         called: target.from.clone(),
         users: vec![(choice, stream)],
         curve: Rc::new(own.map_or(&outcome.curve, |own| &own.curve).clone()),

@@ -1,8 +1,9 @@
 //! Options whose totals were not made with any factors that they show: which reading gives the totals.
 //!
 //! One total has room for many readings, so only those are tried that leave nothing to fit: declared and round rates,
-//! moved edges, round inflation, timings, roundings. How sure such a finding is: 1 - (readings tried) x (tolerance) /
-//! |found - expected|, which is how unlikely a total is met by chance, divided by the number of kinds that give it.
+//! moved edges, round inflation, timings, roundings. How sure such a finding is: 1 - (readings tried) x (distance of
+//! the total from the reading, or its tolerance where it was rounded) / |found - expected|, which is how unlikely a total
+//! is met by chance, divided by the number of kinds that give it.
 
 use std::rc::Rc;
 
@@ -42,6 +43,8 @@ pub struct Total {
     pub given: usize,
     /// Kinds of mistake that give them as well.
     pub ties: Vec<Kind>,
+    /// How likely the total is met by chance.
+    pub chance: f64,
     /// How sure it is.
     pub confidence: f64,
 }
@@ -52,6 +55,8 @@ struct Gives {
     reading: Reading,
     second: Option<Second>,
     rows: Vec<Series>,
+    /// The largest distance of a total from it.
+    away: f64,
 }
 
 /// The reading of an option's totals, where one is found.
@@ -60,8 +65,11 @@ struct Gives {
 pub fn total(seen: &Seen, c: usize, rows: &[Series], explained: impl Fn(&Compared) -> bool) -> Option<Total> {
     let shown = Consequences::of(seen, rows);
     let cells: Vec<&Compared> = shown.totals(c).collect();
-    let off =
-        |cell: &&&Compared| cell.standing == Standing::Differs && !explained(cell) && !shown.follows(cell);
+    // Within the digits shown, a total may still hold digits of its own.
+    let off = |cell: &&&Compared| match cell.standing {
+        Standing::Differs => !explained(cell) && !shown.follows(cell),
+        _ => !explained(cell) && !seen.is_rounded(cell) && !shown.gives_exactly(cell) && apart(seen, cell),
+    };
     let mut differing: Vec<&Compared> = cells.iter().filter(off).copied().collect();
     differing.sort_by_key(|cell| seen.target(cell).role != TargetRole::Npv);
     let cell = (*differing.first()?).clone();
@@ -87,9 +95,9 @@ pub fn total(seen: &Seen, c: usize, rows: &[Series], explained: impl Fn(&Compare
         for options in options {
             let made: Vec<Series> =
                 options.iter().flat_map(|&option| made(seen, option, &reading, second)).collect();
-            if Consequences::of(seen, &[rows, &made[..]].concat()).gives(c, exactly) {
-                let own = made.into_iter().filter(|row| row.users[0].0 == c).collect();
-                found.push(Gives { kinds: kinds.clone(), reading: reading.clone(), second, rows: own });
+            if let Some(away) = Consequences::of(seen, &[rows, &made[..]].concat()).gives(c, exactly) {
+                let rows = made.into_iter().filter(|row| row.users[0].0 == c).collect();
+                found.push(Gives { kinds: kinds.clone(), reading: reading.clone(), second, rows, away });
                 break;
             }
         }
@@ -97,15 +105,26 @@ pub fn total(seen: &Seen, c: usize, rows: &[Series], explained: impl Fn(&Compare
     let (Some(held), Cached::Number(expected)) = (seen.held(&cell).number(), &cell.expected) else {
         return None;
     };
-    let tolerance = if exactly { tolerance::RELATIVE * expected.abs() } else { cell.tolerance };
-    let chance = f64::from(tried) * tolerance / (held - expected).abs();
-    let mut all = found.into_iter();
-    let Gives { kinds, reading, second, rows } = all.next()?;
+    // As near as sums of products come to the last digit.
+    let near = |away: f64| away.max(1e-12 * expected.abs());
+    let nearest = found.iter().map(|gives| near(gives.away)).fold(f64::INFINITY, f64::min);
+    let mut all = found.into_iter().filter(|gives| near(gives.away) <= 100.0 * nearest);
+    let Gives { kinds, reading, second, rows, away } = all.next()?;
+    let within = if exactly { near(away) } else { cell.tolerance };
+    let chance = f64::from(tried) * within / (held - expected).abs();
     let mut ties: Vec<Kind> = all.flat_map(|other| other.kinds).collect();
     ties.sort_unstable();
     ties.dedup();
     let confidence = (1.0 - chance).max(0.0) / (1 + ties.len()) as f64;
-    Some(Total { kinds, rows, reading, second, given: cells.len(), cell, ties, confidence })
+    Some(Total { kinds, rows, reading, second, given: cells.len(), cell, ties, chance, confidence })
+}
+
+/// Whether a number is farther from what the basis gives than the tolerance of factors.
+fn apart(seen: &Seen, cell: &Compared) -> bool {
+    match (seen.held(cell).number(), &cell.expected) {
+        (Some(held), Cached::Number(x)) => (held - x).abs() > tolerance::RELATIVE * x.abs(),
+        _ => false,
+    }
 }
 
 /// What is tried, the simplest first.
@@ -189,7 +208,7 @@ fn as_declared(seen: &Seen, c: usize, users: Vec<User>) -> Series {
     };
     Series {
         source: Source::Totals,
-        ranges: vec![axis.at.clone()],
+        ranges: vec![axis.at.hull()],
         called: String::new(),
         users,
         curve: Rc::new(outcome.curve.clone()),

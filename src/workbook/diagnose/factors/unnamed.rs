@@ -7,7 +7,7 @@ use crate::appraisal::{Covered, TargetRole};
 use crate::diagnose::Seen;
 use crate::diagnose::consequences::Consequences;
 use crate::reading::Value;
-use crate::references::SheetRange;
+use crate::references::{Area, SheetRange};
 use crate::suggest::reads_as_factors;
 
 /// So many rows that may be factors by their sum are looked at.
@@ -26,11 +26,11 @@ pub fn unnamed_rows(seen: &Seen) -> Vec<Series> {
         }
         let shown = choice.targets.iter().flat_map(|target| &target.held).any(|held| held.number().is_some());
         let candidates = seen.appraisal.coverage.iter().filter(|row| {
-            let n = row.at.range.len() as f64;
-            row.roles.is_empty() && row.total > 0.0 && row.total < 1.5 * n && along(seen, c, &row.at)
+            let n = row.at.len() as f64;
+            row.roles.is_empty() && row.total > 0.0 && row.total < 1.5 * n && along(seen, c, &row.at.hull())
         });
         let candidates: Vec<&Covered> = candidates.take(MOST).collect();
-        seen.load(&candidates.iter().map(|row| row.at.clone()).collect::<Vec<_>>());
+        seen.load(&candidates.iter().map(|row| row.at.hull()).collect::<Vec<_>>());
         let candidates: Vec<(&Covered, Series)> =
             candidates.into_iter().filter_map(|row| Some((row, series(seen, c, row)?))).collect();
         let headed: Vec<&(&Covered, Series)> =
@@ -54,7 +54,7 @@ fn along(seen: &Seen, c: usize, at: &SheetRange) -> bool {
     let choice = &seen.appraisal.choices[c];
     let axis = &seen.appraisal.axes[choice.axis].at;
     let streams = choice.streams.iter().map(|stream| &stream.at);
-    std::iter::once(axis).chain(streams).any(|other| {
+    std::iter::once(axis).chain(streams).map(Area::hull).any(|other| {
         let (a, b) = (&at.range, &other.range);
         let across = a.first.col == b.first.col && a.last.col == b.last.col && b.rows() == 1;
         let down = a.first.row == b.first.row && a.last.row == b.last.row && b.cols() == 1;
@@ -62,9 +62,9 @@ fn along(seen: &Seen, c: usize, at: &SheetRange) -> bool {
     })
 }
 
-/// The row as a series, where it looks like factors: it starts near 1, never rises above that, and falls.
+/// The row as a series, where it looks like factors: it starts near 1 and ends lower.
 fn series(seen: &Seen, c: usize, row: &Covered) -> Option<Series> {
-    let grid = seen.grid(&row.at)?;
+    let grid = seen.grid(&row.at.hull())?;
     let outcome = &seen.outcomes[c];
     let mut points = Vec::new();
     for (index, (_, cell)) in grid.iter().enumerate() {
@@ -74,11 +74,10 @@ fn series(seen: &Seen, c: usize, row: &Covered) -> Option<Series> {
     }
     let (first, last) = (points.first()?, points.last()?);
     let near = (0.5..=1.2).contains(&(first.found / first.declared));
-    let falls = points.windows(2).all(|pair| pair[1].found <= pair[0].found) && last.found < first.found;
-    let positive = points.iter().all(|p| p.found > 0.0 && p.found < 1.5);
-    (points.len() > 2 && near && falls && positive).then(|| Series {
+    let falls = last.found < first.found && points.iter().all(|p| p.found > 0.0 && p.found < 1.5);
+    (points.len() > 2 && near && falls).then(|| Series {
         source: Source::Factors,
-        ranges: vec![row.at.clone()],
+        ranges: vec![row.at.hull()],
         called: row.heading.clone(),
         users: vec![(c, None)],
         curve: Rc::new(outcome.curve.clone()),
@@ -101,6 +100,6 @@ fn used(seen: &Seen, c: usize, row: &Series, implied: &[Series]) -> bool {
     if !of_option.is_empty() {
         return of_option.iter().all(by_year);
     }
-    let exactly = |rows: &[Series]| Consequences::of(seen, rows).gives(c, true);
+    let exactly = |rows: &[Series]| Consequences::of(seen, rows).gives(c, true).is_some();
     exactly(std::slice::from_ref(row)) && !exactly(&[])
 }

@@ -57,7 +57,7 @@ pub(super) fn sheet(records: &[Record], place: &Path) -> Sheet {
         for (i, option) in record.report.options.iter().enumerate() {
             row += 1;
             workbook(&mut sheet, row, record, place);
-            sheet.text(row, 1, Style::Text, &option.name);
+            sheet.text(row, 1, Style::Text, option.called());
             values(&mut sheet, row, option);
             standing(&mut sheet, row, option);
             if i == 0 {

@@ -57,7 +57,11 @@ fn mover(record: &Record, option: &OptionReport) -> Option<Mover> {
     let before = option.bridge.declared.map(|stand| stand.npv).or(option.bridge.held)?;
     let now = option.bridge.now.npv;
     let name = record.input.rsplit(['/', '\\']).next().unwrap_or(&record.input);
-    (before != now && before != 0.0).then(|| Mover { label: format!("{name}: {}", option.name), before, now })
+    (before != now && before != 0.0).then(|| Mover {
+        label: format!("{name}: {}", option.called()),
+        before,
+        now,
+    })
 }
 
 /// A table of the largest by a measure with its chart; gives the next free row.
