@@ -24,11 +24,21 @@ pub fn limit_memory(bytes: u64) {
 #[cfg(not(target_os = "linux"))]
 pub fn limit_memory(_bytes: u64) {}
 
-/// From now on this process ends with its parent, whose number it was given: at once where that has gone already.
+/// From now on this process ends with its parent, whose number it was given: at once where that has gone already. What it
+/// has started ends with it.
 #[cfg(target_os = "linux")]
 pub fn end_with_parent(parent: u32) {
+    extern "C" fn end(_signal: libc::c_int) {
+        // SAFETY: none of these takes a pointer, and a handler may call them. The group is this process and what it
+        // started, as its parent made it the first of a group; where it is not, others are left alone.
+        unsafe {
+            let own = libc::getpid();
+            libc::kill(if libc::getpgrp() == own { 0 } else { own }, libc::SIGKILL);
+        }
+    }
+    on_signal(libc::SIGTERM, end);
     // SAFETY: prctl with these arguments takes no pointers.
-    unsafe { libc::prctl(libc::PR_SET_PDEATHSIG, libc::SIGKILL) };
+    unsafe { libc::prctl(libc::PR_SET_PDEATHSIG, libc::SIGTERM) };
     // A parent that went before has left this process to another, and no signal will come.
     if std::os::unix::process::parent_id() != parent {
         std::process::exit(1);
@@ -42,6 +52,29 @@ pub fn end_with_parent(_parent: u32) {
         let _ = std::io::copy(&mut std::io::stdin(), &mut std::io::sink());
         std::process::exit(1);
     });
+}
+
+/// Ends a process that was made the first of a group, and all that it started.
+pub fn end_group(child: &mut std::process::Child) -> std::io::Result<()> {
+    #[cfg(unix)]
+    if let Ok(group) = libc::pid_t::try_from(child.id()) {
+        // SAFETY: kill takes no pointer. The number is not another's yet, since nobody has waited for this process.
+        unsafe { libc::kill(-group, libc::SIGKILL) };
+    }
+    child.kill()
+}
+
+/// What is done when a signal comes.
+#[cfg(unix)]
+fn on_signal(signal: libc::c_int, handler: extern "C" fn(libc::c_int)) {
+    // SAFETY: an all-zero sigaction is valid, and lives until the call returns. Handlers of this file do nothing that a
+    // handler may not do.
+    unsafe {
+        let mut action: libc::sigaction = std::mem::zeroed();
+        action.sa_sigaction = handler as usize;
+        action.sa_flags = libc::SA_RESTART;
+        libc::sigaction(signal, &raw const action, std::ptr::null_mut());
+    }
 }
 
 /// The signals that ask a run to stop.
@@ -59,17 +92,14 @@ mod signals {
     /// Notes the signals that ask to stop instead of ending at once; those that the caller ignores stay ignored.
     pub fn note_signals() {
         for signal in [libc::SIGINT, libc::SIGTERM, libc::SIGHUP] {
-            // SAFETY: an all-zero sigaction is valid. The handler does nothing but store into an atomic, which a
-            // handler may do; both structures live until the calls return.
-            unsafe {
+            // SAFETY: an all-zero sigaction is valid, and sigaction only writes into it.
+            let ignored = unsafe {
                 let mut before: libc::sigaction = std::mem::zeroed();
-                let mut action: libc::sigaction = std::mem::zeroed();
-                action.sa_sigaction = note as extern "C" fn(libc::c_int) as usize;
-                action.sa_flags = libc::SA_RESTART;
                 libc::sigaction(signal, std::ptr::null(), &raw mut before);
-                if before.sa_sigaction != libc::SIG_IGN {
-                    libc::sigaction(signal, &raw const action, std::ptr::null_mut());
-                }
+                before.sa_sigaction == libc::SIG_IGN
+            };
+            if !ignored {
+                super::on_signal(signal, note);
             }
         }
     }

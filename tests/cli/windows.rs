@@ -79,6 +79,15 @@ fn a_fill_on_windows_is_a_fill_here() {
     let mut cells = Vec::new();
     for ((name, text), (other, found)) in here.iter().zip(&there) {
         assert_eq!(name, other);
+        if name.ends_with("record.json") {
+            // Its seal is a hash of all the other bytes.
+            let record = |text: &str| {
+                serde_json::from_str::<serde_json::Value>(text).expect("a record")["record"].clone()
+            };
+            assert!(record(text)["report"].is_object());
+            assert_eq!(record(text), record(found));
+            continue;
+        }
         cells.extend(differing(text, found));
     }
     assert!(cells.len() <= 60, "{cells:?}");

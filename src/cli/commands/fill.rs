@@ -16,6 +16,7 @@ use crate::json::Document;
 use crate::outputs::{Folder, Output, outputs_for, stream};
 use crate::shelf::gather::{Gathered, gather, skipped_words};
 use crate::shelf::pool::{self, Listener, Run};
+use crate::shelf::scratch::Scratch;
 use crate::shelf::telling::{How, Shown, Telling};
 use crate::shelf::worker::{Limits, Task};
 use crate::terminal::{self, Terminal};
@@ -71,7 +72,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
             telling.ended(i, done);
         }
     } else {
-        let run = how_to_run(args, order, schedules);
+        let run = how_to_run(args, order, schedules)?;
         pool::run(&tasks(&all.inputs, &outputs), &run, &mut telling).inspect_err(|_| telling.stopped())?;
     }
     drop(folder);
@@ -114,17 +115,22 @@ fn request(args: &Fill, catalogue: &Catalogue) -> Result<FillRequest, Failure> {
     })
 }
 
-fn how_to_run(args: &Fill, order: Order, schedules: &Option<PathBuf>) -> Run {
+fn how_to_run(args: &Fill, order: Order, schedules: &Option<PathBuf>) -> Result<Run, Failure> {
     let jobs = args.jobs.or_else(|| std::thread::available_parallelism().ok());
-    Run {
+    // Settling alone puts anything aside.
+    let scratch = args.settle.then(Scratch::new).transpose();
+    let scratch =
+        scratch.map_err(|error| Failure::Message(format!("{}: {error}", std::env::temp_dir().display())))?;
+    Ok(Run {
         order,
+        scratch,
         schedules: schedules.clone(),
         limits: Limits {
             memory: args.memory_limit.unwrap_or(Limits::MEMORY_MB).get() << 20,
             time: Duration::from_secs(args.time_limit.unwrap_or(Limits::TIME_SECONDS).get()),
         },
         jobs: jobs.unwrap_or(NonZeroUsize::MIN),
-    }
+    })
 }
 
 fn tasks(inputs: &[Input], outputs: &[Output]) -> Vec<Task> {

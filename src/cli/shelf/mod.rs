@@ -3,6 +3,7 @@
 pub mod child;
 pub mod gather;
 pub mod pool;
+pub mod scratch;
 pub mod telling;
 pub mod values;
 pub mod walk;

@@ -10,6 +10,7 @@ use std::time::Duration;
 use hence_workbook::problem::WorkbookError;
 use hence_workbook::shelf::{Done, Order};
 
+use super::scratch::Scratch;
 use super::worker::{Limits, Slot, Task, work};
 use crate::{Failure, limits};
 
@@ -17,7 +18,7 @@ use crate::{Failure, limits};
 const WATCH: Duration = Duration::from_millis(20);
 
 /// How a run goes.
-#[derive(Clone, Debug)]
+#[derive(Debug)]
 pub struct Run {
     /// What is to be done with every workbook.
     pub order: Order,
@@ -25,6 +26,8 @@ pub struct Run {
     pub schedules: Option<PathBuf>,
     /// What each process may use.
     pub limits: Limits,
+    /// Where processes may put things aside.
+    pub scratch: Option<Scratch>,
     /// How many processes at a time.
     pub jobs: NonZeroUsize,
 }
@@ -53,7 +56,7 @@ pub fn run(tasks: &[Task], run: &Run, listener: &mut dyn Listener) -> Result<(),
                 while !stop.load(Ordering::SeqCst) {
                     let index = next.fetch_add(1, Ordering::SeqCst);
                     let Some(task) = tasks.get(index) else { break };
-                    let done = work(task, &run.order, run.schedules.as_deref(), &run.limits, slot, stop);
+                    let done = work(task, run, slot, stop);
                     if to.send((index, done)).is_err() {
                         break;
                     }

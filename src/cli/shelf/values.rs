@@ -41,7 +41,7 @@ fn asked(name: &str, bytes: &[u8], limits: &Limits, slot: &Slot) -> Result<Conve
         limits.memory.to_string().into(),
         name.into(),
     ];
-    let Started { stdin, stdout, words } = start(&arguments, slot)?;
+    let Started { stdin, stdout, words } = start(&arguments, None, slot)?;
     // Its standard input stays open until it has ended: by that it knows that this process lives.
     let mut stdin = stdin;
     if let Some(to) = &mut stdin {

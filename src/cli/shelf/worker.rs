@@ -14,7 +14,10 @@ use hence_workbook::package::Pending;
 use hence_workbook::problem::{Problem, WorkbookError};
 use hence_workbook::shelf::{Done, Order, mishap};
 
+use super::pool::Run;
+use super::scratch::Scratch;
 use super::{child, wire};
+use crate::limits;
 
 /// What a process may use.
 #[derive(Clone, Copy, Debug)]
@@ -35,7 +38,7 @@ impl Default for Limits {
 }
 
 impl Limits {
-    /// The memory of a process in MB, where none is given: a workbook of a million cells takes a sixth of it.
+    /// The memory of a process in MB, where none is given: a million cells with formulas take a fifth of it.
     pub const MEMORY_MB: NonZeroU64 = NonZeroU64::new(1024).unwrap();
     /// Its time in seconds, where none is given.
     pub const TIME_SECONDS: NonZeroU64 = NonZeroU64::new(600).unwrap();
@@ -64,7 +67,7 @@ impl Slot {
     /// Ends its process, if one is at work.
     pub fn end(&self) {
         if let Some(running) = &mut *self.lock() {
-            let _ = running.child.kill();
+            let _ = limits::end_group(&mut running.child);
         }
     }
 
@@ -72,7 +75,7 @@ impl Slot {
     pub fn end_if_late(&self, limit: Duration) {
         if let Some(running) = &mut *self.lock()
             && running.since.elapsed() > limit
-            && running.child.kill().is_ok()
+            && limits::end_group(&mut running.child).is_ok()
         {
             running.late = true;
         }
@@ -109,23 +112,17 @@ pub struct Task {
 }
 
 /// Works on one workbook. Its output gets its name once all of it has come and the process ended well.
-pub fn work(
-    task: &Task,
-    order: &Order,
-    schedules: Option<&Path>,
-    limits: &Limits,
-    slot: &Slot,
-    stop: &AtomicBool,
-) -> Result<Done, WorkbookError> {
+pub fn work(task: &Task, run: &Run, slot: &Slot, stop: &AtomicBool) -> Result<Done, WorkbookError> {
+    let Run { order, limits, .. } = run;
     let arguments: [OsString; 6] = [
         child::FILL.into(),
         std::process::id().to_string().into(),
         limits.memory.to_string().into(),
-        schedules.map_or_else(OsString::new, Into::into),
+        run.schedules.as_ref().map_or_else(OsString::new, Into::into),
         task.input.clone().into(),
         task.output.clone().into(),
     ];
-    let Started { stdin, stdout, words } = start(&arguments, slot)?;
+    let Started { stdin, stdout, words } = start(&arguments, run.scratch.as_ref().map(Scratch::path), slot)?;
     if stop.load(Ordering::SeqCst) {
         // Those that were at work when the run was stopped have been ended; this one was not among them yet.
         slot.end();
@@ -166,11 +163,18 @@ pub(super) struct Started {
     pub(super) words: JoinHandle<String>,
 }
 
-/// Starts a process of this program.
-pub(super) fn start(arguments: &[OsString], slot: &Slot) -> Result<Started, WorkbookError> {
+/// Starts a process of this program, which may put things aside in a folder.
+pub(super) fn start(
+    arguments: &[OsString],
+    scratch: Option<&Path>,
+    slot: &Slot,
+) -> Result<Started, WorkbookError> {
     let mut command = Command::new(program().map_err(|error| mishap::not_started(&error))?);
     command.args(arguments).stdin(Stdio::piped()).stdout(Stdio::piped()).stderr(Stdio::piped());
     command.env("RUST_BACKTRACE", "0");
+    if let Some(scratch) = scratch {
+        command.env(if cfg!(windows) { "TMP" } else { "TMPDIR" }, scratch);
+    }
     #[cfg(unix)]
     {
         use std::os::unix::process::CommandExt;

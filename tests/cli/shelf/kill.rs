@@ -14,12 +14,13 @@ const KILL: i32 = 9;
 const TERM: i32 = 15;
 const INT: i32 = 2;
 
-/// Processes whose arguments name a folder.
+/// Processes whose arguments name a folder: those that work on one workbook, and those that they have started.
 fn at_work(folder: &Path) -> Vec<String> {
     let entries = std::fs::read_dir("/proc").expect("the list of processes");
     let arguments = entries.flatten().filter_map(|entry| std::fs::read(entry.path().join("cmdline")).ok());
     let texts = arguments.map(|bytes| String::from_utf8_lossy(&bytes).replace('\0', " "));
-    texts.filter(|text| text.contains(folder.to_str().unwrap()) && text.contains("fill-one")).collect()
+    let theirs = |text: &String| text.contains("fill-one-workbook") || text.contains("soffice");
+    texts.filter(|text| text.contains(folder.to_str().unwrap()) && theirs(text)).collect()
 }
 
 /// Waits until no process is left over; the system takes a moment to end those of a killed parent.
@@ -137,4 +138,40 @@ fn a_stopped_run_that_made_nothing_leaves_nothing() {
     assert_eq!(child.wait_with_output().unwrap().status.signal(), Some(TERM));
     none_is_left(&shelf.path("shelf"));
     assert!(!shelf.path("deep").exists());
+}
+
+/// LibreOffice, which a process starts to settle a workbook, does not outlive a run that is stopped or killed.
+#[test]
+fn what_a_process_has_started_ends_with_it() {
+    if hence_workbook::settle::soffice().is_none() {
+        assert!(std::env::var_os("HENCE_REQUIRE_TOOLS").is_none(), "LibreOffice (soffice) is not installed");
+        eprintln!("not run: LibreOffice (soffice) is not installed");
+        return;
+    }
+    for by in [TERM, KILL] {
+        let shelf = Shelf::empty();
+        // A formula that depends on what is filled has no result until LibreOffice computes it.
+        shelf.put("a.xlsx", crate::books::plan(&[("B60", "=B34*2>")]).bytes());
+        let aside = shelf.path("aside");
+        std::fs::create_dir(&aside).unwrap();
+        let run = || {
+            let mut command = crate::hence();
+            command.arg("fill").arg(shelf.path("shelf")).arg("--out").arg(shelf.path("out")).arg("--settle");
+            command.env("TMPDIR", &aside).stdout(Stdio::piped()).stderr(Stdio::piped());
+            command
+        };
+        let child = run().spawn().unwrap();
+        let since = Instant::now();
+        while !at_work(&aside).iter().any(|text| text.contains("soffice.bin")) {
+            assert!(since.elapsed() < Duration::from_secs(120), "LibreOffice is started");
+            std::thread::sleep(Duration::from_millis(5));
+        }
+        signal(&child, by);
+        assert_eq!(child.wait_with_output().unwrap().status.signal(), Some(by));
+        none_is_left(&aside);
+        let output = run().arg("--resume").output().unwrap();
+        assert_eq!(code(&output), 0, "{}", stderr(&output));
+        assert_eq!(shelf.names("out"), ["a.audited.xlsx"]);
+        assert_eq!(shelf.names("aside"), Vec::<String>::new(), "nothing is left aside");
+    }
 }

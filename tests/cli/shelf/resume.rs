@@ -9,7 +9,7 @@ use super::{Shelf, workbook};
 use crate::{code, stderr, stdout};
 
 const NAMES: [&str; 6] = ["a.xlsx", "b.xlsx", "c.xlsx", "d.xlsx", "sub/e.xlsx", "text.xlsx"];
-const ASKED: [&str; 4] = ["--basis", "3%", "--ledger", "ledger.jsonl"];
+const ASKED: [&str; 6] = ["--basis", "3%", "--ledger", "ledger.jsonl", "--summary", "summary.xlsx"];
 
 /// A shelf that was filled but for one workbook, and its outputs and ledger.
 fn done() -> Shelf {
@@ -27,7 +27,9 @@ fn changed(path: PathBuf) -> SystemTime {
 #[test]
 fn a_resumed_run_makes_what_is_not_as_it_would_make_it() {
     let shelf = done();
-    let whole = (shelf.files("out"), std::fs::read(shelf.path("ledger.jsonl")).unwrap());
+    let kept = ["ledger.jsonl", "summary.xlsx"].map(|name| shelf.path(name));
+    let all = || (shelf.files("out"), kept.clone().map(|path| std::fs::read(path).unwrap()));
+    let whole = all();
     let first = stdout(&shelf.fill("again", &ASKED[..2]));
     let refused = shelf.fill("out", &ASKED[..2]);
     assert_eq!(code(&refused), 1, "without --resume nothing that is there is replaced");
@@ -49,8 +51,7 @@ fn a_resumed_run_makes_what_is_not_as_it_would_make_it() {
     let resumed = shelf.fill("out", &[&ASKED[..], &["--resume"]].concat());
     assert_eq!(code(&resumed), 1, "{}", stderr(&resumed));
     assert!(stderr(&resumed).contains("3 filled, 2 filled before and kept"), "{}", stderr(&resumed));
-    assert!(shelf.files("out") == whole.0, "the outputs of an unbroken run");
-    assert!(std::fs::read(shelf.path("ledger.jsonl")).unwrap() == whole.1, "its ledger");
+    assert!(all() == whole, "the outputs, ledger and summary of an unbroken run");
     assert_eq!(stdout(&resumed), first.replace("again/", "out/"), "its report");
     assert_eq!(changed(out("a.audited.xlsx")), before, "what is done is left alone");
 }
