@@ -29,6 +29,7 @@ pub mod outcome;
 mod own;
 pub mod package;
 pub mod patch;
+mod periods;
 mod plan;
 pub mod preflight;
 pub mod problem;

@@ -160,8 +160,12 @@ fn option(case: &Case, sheet: &str, axis: usize, strong: f64, full: bool) -> Cho
 
 pub fn appraisal(case: &Case) -> Appraisal {
     let names = ["Do nothing", "It's a liner"];
-    let axis =
-        |s: &str| Axis { at: line(case, s, 3).into(), direction: case.direction, labels: labels(case) };
+    let axis = |s: &str| Axis {
+        at: line(case, s, 3).into(),
+        direction: case.direction,
+        labels: labels(case),
+        spans: None,
+    };
     let choices: Vec<Choice> =
         vec![option(case, names[0], 0, 1.0, false), option(case, names[1], 1, 2.5, true)];
     let coverage = choices

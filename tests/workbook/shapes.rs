@@ -123,7 +123,17 @@ fn of_openpyxl() -> Vec<Shape> {
         ],
         after: Vec::new(),
     };
-    vec![table, dated]
+    let mut all = vec![table, dated];
+    // Columns that are not a year each, with what Python makes of them.
+    let said = String::from_utf8(output.stdout).expect("text");
+    for name in ["months", "mixed", "quarters", "halves"] {
+        let own = said.lines().filter_map(|line| line.strip_prefix(name)?.trim().split_once(' '));
+        let expected: Vec<(String, f64)> =
+            own.map(|(at, x)| (at.to_owned(), x.parse().expect("a number"))).collect();
+        assert!(expected.len() > 3, "{name}: {said}");
+        all.push(Shape { name, bytes: bytes(&format!("{name}.xlsx")), expected, after: Vec::new() });
+    }
+    all
 }
 
 fn at(cell: &str, x: f64) -> (String, f64) {

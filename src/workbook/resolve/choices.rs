@@ -5,12 +5,12 @@ use std::collections::BTreeMap;
 use crate::appraisal::{Axis, Choice, Stream, StreamKind};
 use crate::problem::{Place, Problem};
 use crate::reading::Value;
-use crate::references::SheetRange;
+use crate::references::Area;
 use crate::roles::{ROLES, Role, key};
 
 use super::find::Named;
 use super::groups::{Group, Split, names_of};
-use super::{Context, counted, prices, settings, streams, targets, texts, welfare, years};
+use super::{Context, counted, prices, settings, spans, streams, targets, texts, welfare, years};
 
 /// The options, and what they share.
 pub(super) struct Built {
@@ -23,17 +23,19 @@ pub(super) struct Built {
 pub(super) fn build(context: &mut Context, split: &Split, told: Option<&str>) -> Built {
     let mut built = Built { axes: Vec::new(), choices: Vec::new(), baseline: None };
     report_missing(context, split, told);
-    let mut read: BTreeMap<SheetRange, Option<usize>> = BTreeMap::new();
+    let mut read: BTreeMap<(Area, Option<Area>), Option<usize>> = BTreeMap::new();
     for group in &split.groups {
         let Some(years) = years_of(context, split, group) else { continue };
-        let axis = match read.get(&years.at) {
+        let span = split.of(group, Role::Span);
+        let cells = (years.area.clone(), span.map(|span| span.area.clone()));
+        let axis = match read.get(&cells) {
             Some(axis) => *axis,
             None => {
-                let axis = years::axis(context, years).map(|axis| {
+                let axis = years::axis(context, years, span).map(|axis| {
                     built.axes.push(axis);
                     built.axes.len() - 1
                 });
-                read.insert(years.at.clone(), axis);
+                read.insert(cells, axis);
                 axis
             }
         };
@@ -85,6 +87,7 @@ fn choice(
     choice.budget = budget(context, split, group, &choice);
     choice.targets = targets::targets(context, &group.named, &choice, axis);
     counted::check(context, &choice);
+    spans::check(context, &choice, axis);
     Some(choice)
 }
 

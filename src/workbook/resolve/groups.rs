@@ -110,7 +110,7 @@ fn copied(named: &[Named], options: &BTreeSet<String>) -> BTreeSet<What> {
     let own = named.iter().filter(|named| {
         named.name.option.is_none() && named.scope.as_ref().is_some_and(|scope| options.contains(scope))
     });
-    let repeated: BTreeSet<(Role, Option<String>, Range)> = own.map(|named| place_of(named)).collect();
+    let repeated: BTreeSet<(Role, Option<String>, Range)> = own.map(place_of).collect();
     let kept: Vec<&Named> =
         named.iter().filter(whole).filter(|named| repeated.contains(&place_of(named))).collect();
     let both = |sheet: &str| {

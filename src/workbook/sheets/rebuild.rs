@@ -3,6 +3,7 @@
 use hence_core::Where;
 
 use super::growth_route::{Persistent, Regimes};
+use super::periods;
 use super::second_route::{Form, Route, Rule};
 use crate::appraisal::{Base, Label};
 use crate::formulas::{absolute, literal};
@@ -47,9 +48,15 @@ impl Rebuilt {
         let block = &layout.blocks[k];
         let choice = &input.appraisal.choices[block.choice];
         let outcome = &input.outcomes[block.choice];
-        let labels = &input.appraisal.axes[choice.axis].labels;
-        let offsets: Vec<f64> =
-            labels.iter().map(|l| super::offsets::rebuilt(l, &choice.base.value, outcome.timing)).collect();
+        let axis = &input.appraisal.axes[choice.axis];
+        let labels = &axis.labels;
+        let offsets: Vec<f64> = match &axis.spans {
+            Some(spans) => periods::rebuilt(axis, spans, choice, outcome.timing),
+            None => labels
+                .iter()
+                .map(|l| super::offsets::rebuilt(l, &choice.base.value, outcome.timing))
+                .collect(),
+        };
         let averaged = outcome.timing.flows == hence_core::Position::Averaged
             && !labels.iter().any(|l| matches!(l, Label::Offset(_) | Label::Date(_)));
         let fold = |f: fn(f64, f64) -> f64, start| offsets.iter().copied().fold(start, f);
