@@ -1,4 +1,5 @@
 """Workbooks as openpyxl saves them, in shapes that the tests fill: `make_shapes.py FOLDER`. Every name and figure is invented."""
+import calendar
 import datetime
 import math
 import os
@@ -140,6 +141,29 @@ def months():
     return book, {"B6": factors[0], "M6": 1 / 1.06, "Y6": 1.06 ** -2, "B7": npv, "D7": npv / annuity, "F7": paid}
 
 
+def month_ends():
+    """Months labelled by their last days: dated flows, which need no years per column."""
+    base = datetime.date(2025, 12, 31)
+    days = [datetime.date(2026 + i // 12, i % 12 + 1, calendar.monthrange(2026 + i // 12, i % 12 + 1)[1]) for i in range(30)]
+    net = [-40] * 6 + [12] * 24
+    book = laid_out(
+        [["Base", base], ["Basis", "4%"], ["Month", *days], ["Net", *net], ["Factor"], ["NPV"]],
+        {
+            "base": "Plan!$B$1", "basis": "Plan!$B$2", "years": "Plan!$B$3:$AE$3", "flow_net": "Plan!$B$4:$AE$4",
+            "factor": "Plan!$B$5:$AE$5", "npv": "Plan!$B$6",
+        },
+    )
+    # Whole anniversaries of the base, and days over the length of the year under way.
+    ts = []
+    for day in days:
+        whole = day.year - 2025 - (1 if (day.month, day.day) < (12, 31) else 0)
+        start = datetime.date(2025 + whole, 12, 31)
+        ts.append(whole + (day - start).days / (datetime.date(2026 + whole, 12, 31) - start).days)
+    factors = [1.04 ** -t for t in ts]
+    npv = math.fsum(x * d for x, d in zip(net, factors))
+    return book, {"B5": 1.04 ** -(31 / 365), "M5": 1 / 1.04, "Y5": 1.04 ** -2, "AE5": factors[-1], "B6": npv}
+
+
 def mixed():
     """Years, then blocks of years; bands, prices of the day, a price that grows; flows in the middle, base at the start."""
     spans = [1] * 5 + [5, 5, 10]
@@ -232,7 +256,7 @@ if __name__ == "__main__":
     folder = sys.argv[1]
     save(tables(), folder, "tables.xlsx")
     save(from_1904(), folder, "from-1904.xlsx")
-    for make in (months, mixed, quarters, halves):
+    for make in (months, month_ends, mixed, quarters, halves):
         book, expected = make()
         save(book, folder, f"{make.__name__}.xlsx")
         for cell, value in expected.items():

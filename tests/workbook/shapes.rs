@@ -179,10 +179,10 @@ fn of_openpyxl() -> Vec<Shape> {
         after: Vec::new(),
     };
     let mut all = vec![table, dated];
-    // Columns that are not a year each, with what Python makes of them.
+    // Columns that are not a year each, or are dates, with what Python makes of them.
     let said = String::from_utf8(output.stdout).expect("text");
-    for name in ["months", "mixed", "quarters", "halves"] {
-        let own = said.lines().filter_map(|line| line.strip_prefix(name)?.trim().split_once(' '));
+    for name in ["months", "month_ends", "mixed", "quarters", "halves"] {
+        let own = said.lines().filter_map(|line| line.strip_prefix(name)?.strip_prefix(' ')?.split_once(' '));
         let expected: Vec<(String, f64)> =
             own.map(|(at, x)| (at.to_owned(), x.parse().expect("a number"))).collect();
         assert!(expected.len() > 3, "{name}: {said}");

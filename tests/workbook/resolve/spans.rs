@@ -157,3 +157,36 @@ fn options_may_have_periods_of_their_own() {
     let (outcomes, _) = value(&read, &Catalogue::builtin()).unwrap_or_else(|error| panic!("{error}"));
     assert_eq!((outcomes[0].offsets.clone(), outcomes[1].offsets.clone()), (vec![0.0, 5.0], vec![0.0, 1.0]));
 }
+
+/// Half-years against factors by position within a year (US Office of Management and Budget, Circular A-94, 1992,
+/// Appendix B): the middle of year n is the end of half-year 2n - 1, its end that of half-year 2n.
+#[test]
+fn ends_of_half_years_are_middles_and_ends_of_years() {
+    let table = include_str!("../../reference/midyear.csv");
+    let rows: Vec<Vec<f64>> = table
+        .lines()
+        .filter(|line| !line.starts_with('#'))
+        .skip(1)
+        .map(|line| line.split(',').map(|x| x.parse().expect("a number")).collect())
+        .collect();
+    let mut compared = 0;
+    for rate in [0.01, 0.035, 0.07] {
+        let row = |first: &str, values: Vec<String>| format!("{first}: {}\n", values.join(" | "));
+        let cells = format!("A1: 'Basis | {rate}\nA2: 'Span | 0.5\n")
+            + &row("B4", (1..=60).map(|n| n.to_string()).collect())
+            + &row("B5", vec!["1".into(); 60]);
+        let small = Small::default().sheet("Plan", &cells).names(
+            "hence_basis B1, hence_span B2, hence_years B4:BI4, hence_cost_works B5:BI5, hence_npv B9",
+        );
+        let (outcomes, _) = value(&small.resolved(), &Catalogue::builtin()).unwrap_or_else(|e| panic!("{e}"));
+        for row in rows.iter().filter(|row| row[0] == rate && row[1] <= 30.0) {
+            let half = 2 * row[1] as usize - 1;
+            for (i, expected) in [(half - 1, row[3]), (half, row[2])] {
+                let found = outcomes[0].factors[i];
+                assert!((found - expected).abs() <= row[6], "{rate}, half-year {}: {found}", i + 1);
+                compared += 1;
+            }
+        }
+    }
+    assert!(compared >= 20, "{compared} factors");
+}
