@@ -124,6 +124,7 @@ pub(crate) struct Clock {
     pub timing: Timing,
     /// Dates and offsets say themselves where a flow stands; a timing applies to all else.
     pub timed: bool,
+    length: f64,
     /// Years after the base, such that a flow of a year that begins there has the offset of the timing.
     pub years: Vec<f64>,
     /// Offsets of the flows (their years' ends where averaged).
@@ -145,13 +146,17 @@ impl Clock {
             }
             let (flows, base) = (position(timing.flows), position(timing.base));
             let offset = |(i, length): (usize, &f64)| periods.offset(i, *length, flows, base);
-            let offsets = spans.lengths.iter().enumerate().map(offset).collect();
+            let offsets: Vec<f64> = spans.lengths.iter().enumerate().map(offset).collect();
+            let last_years =
+                offsets.iter().zip(&spans.lengths).map(|(t, s)| t + (1.0 - flows) * (s - 1.0).max(0.0));
+            let length = last_years.fold(0.0, f64::max);
             let years = periods.starts.iter().map(|start| start + base * (1.0 - periods.base)).collect();
-            return Ok(Clock { spanned: true, timing, timed, years, offsets });
+            return Ok(Clock { spanned: true, timing, timed, length, years, offsets });
         }
         let shift = shift_of(timing);
-        let offsets = years.iter().map(|y| y + shift).collect();
-        Ok(Clock { spanned: false, timing, timed, years, offsets })
+        let offsets: Vec<f64> = years.iter().map(|y| y + shift).collect();
+        let length = offsets.iter().copied().fold(0.0, f64::max);
+        Ok(Clock { spanned: false, timing, timed, length, years, offsets })
     }
 
     /// The factor of the i-th year.
@@ -163,9 +168,10 @@ impl Clock {
         }
     }
 
-    /// The length of the appraisal: the largest offset, 0 where no flow stands after the base.
+    /// The length of the appraisal: the largest offset, 0 where no flow stands after the base. A period of several years
+    /// counts to where the flow of its last year would stand.
     pub fn length(&self) -> f64 {
-        self.offsets.iter().copied().fold(0.0, f64::max)
+        self.length
     }
 
     /// The offset of a year that is `years` after the base.

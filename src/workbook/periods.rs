@@ -21,7 +21,8 @@
 //! **Conventions**: the rate stays a yearly one, whatever the length of a period. Prices are those at the middle of a
 //! period, and the price base those at the middle of the base period: growth and inflation run over n_i = S_i + (s_i - u)/2
 //! years, which again is the difference of years where periods are years. A flow of several years stands at one moment,
-//! so eras and payback count it there; payback is linear between the moments. Annual equivalents count whole service years.
+//! so eras and payback count it there; payback is linear between the moments. The length of the appraisal, and with it the
+//! service years of annual equivalents, reaches to the last year of a period.
 //!
 //! **Refused**: averaged flows, whose mean is over a year; dates and offsets, which say themselves where a flow stands; a
 //! tail after a last period that is not one year; the role `rates` with periods over a year; consumption.

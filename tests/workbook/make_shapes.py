@@ -180,13 +180,13 @@ def mixed():
             ["Power", *power],
             ["Factor"],
             ["PV of works"],
-            ["NPV", None, "PV of power"],
+            ["NPV", None, "PV of power", None, "Annual"],
         ],
         {
             "base": "Plan!$B$1", "basis": "Plan!$D$1", "timing": "Plan!$F$1", "prices": "Plan!$B$2",
             "growth_power": "Plan!$D$2", "price_basis": "Plan!$F$2", "span": "Plan!$B$3:$I$3",
             "years": "Plan!$B$4:$I$4", "cost_works": "Plan!$B$5:$I$5", "benefit_power": "Plan!$B$6:$I$6",
-            "factor": "Plan!$B$7:$I$7", "pv_works": "Plan!$B$8:$I$8", "npv": "Plan!$B$9", "pv_power": "Plan!$D$9",
+            "factor": "Plan!$B$7:$I$7", "pv_works": "Plan!$B$8:$I$8", "npv": "Plan!$B$9", "pv_power": "Plan!$D$9", "annual": "Plan!$F$9",
         },
     )
     bands = [(0.035, 10), (0.03, math.inf)]
@@ -195,9 +195,12 @@ def mixed():
     ns = [t - 1 for t in offsets(spans, 1, 0.5, 0.5, 1)]
     cost = [x / 1.02 ** n * d for x, n, d in zip(works, ns, factors)]
     gain = [x / 1.02 ** n * 1.015 ** n * d for x, n, d in zip(power, ns, factors)]
+    npv = math.fsum(gain) - math.fsum(cost)
+    # The last year of the last period, 2050, is the 26th from the start of 2025.
+    annuity = math.fsum(banded(n, bands) for n in range(1, 27))
     return book, {
         "B7": factors[0], "G7": factors[5], "I7": factors[7], "G8": cost[5], "I8": cost[7],
-        "B9": math.fsum(gain) - math.fsum(cost), "D9": math.fsum(gain),
+        "B9": npv, "D9": math.fsum(gain), "F9": npv / annuity,
     }
 
 

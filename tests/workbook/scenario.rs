@@ -331,6 +331,7 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
         exact: None,
         timing_sentence: "a flow in 2026 has factor 1.0000, in 2027 0.9662".into(),
         forward: offsets.iter().map(|&t| (t > 0.0).then(|| curve.forward_rate(t.ceil()).unwrap())).collect(),
+        length,
         service_years,
         annuity,
         absolute: Totals {

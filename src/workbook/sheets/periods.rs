@@ -39,7 +39,18 @@ pub(super) fn rebuilt(axis: &Axis, spans: &Spans, choice: &Choice, timing: Timin
     offsets
 }
 
-/// The same as a formula; it counts only while the label in `label_cell` is what it was.
+/// The length of the appraisal: a period of several years counts to where a flow in its last year would stand.
+pub(super) fn length(offsets: &[f64], spans: &Spans, timing: Timing) -> f64 {
+    let (flows, _) = positions(timing);
+    let mut length = 0.0_f64;
+    for (offset, years) in offsets.iter().zip(&spans.lengths) {
+        let last = if *years > 1.0 { offset - flows * years + (years - 1.0) + flows } else { *offset };
+        length = length.max(last);
+    }
+    length
+}
+
+/// The offset as a formula; it counts only while the label in `label_cell` is what it was.
 pub(super) fn formula(
     label_cell: &str,
     axis: &Axis,

@@ -63,7 +63,10 @@ impl Rebuilt {
         // An averaged flow needs the factor a year earlier, too.
         let lowest = (fold(f64::min, f64::INFINITY) - if averaged { 1.0 } else { 0.0 }).min(0.0);
         // The length of the appraisal, from these offsets alone; as many service years begin in it.
-        let length = fold(f64::max, 0.0);
+        let length = match &axis.spans {
+            Some(spans) => periods::length(&offsets, spans, outcome.timing),
+            None => fold(f64::max, 0.0),
+        };
         let service_years = (length - 1e-9).ceil().max(0.0) as u32;
         let reach = length.max(1.0).max(f64::from(service_years));
         let at = Where { base_year: base_year(&choice.base.value), length: Some(length) };
