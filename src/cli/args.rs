@@ -73,7 +73,7 @@ pub enum Command {
 
 #[derive(Debug, Args)]
 pub struct Fill {
-    /// The workbooks (.xlsx, .xlsm); - reads one from standard input
+    /// The workbooks (.xlsx, .xlsm) or templates (.xltx, .xltm); - reads one from standard input
     #[arg(required = true, value_name = "BOOK")]
     pub books: Vec<PathBuf>,
     /// Where to write: a file when it ends in .xlsx or .xlsm (one workbook only), - for standard output, else a

@@ -60,8 +60,18 @@ fn audited_name(input: &Path) -> Result<PathBuf, Failure> {
             input.display()
         )));
     }
-    let extension = input.extension().map(|e| format!(".{}", e.to_string_lossy())).unwrap_or_default();
+    let extension = output_extension(input).map(|e| format!(".{e}")).unwrap_or_default();
     Ok(input.with_file_name(format!("{stem}.audited{extension}")))
+}
+
+/// The extension of what is made from a file: that of a workbook, where the file is a template.
+fn output_extension(input: &Path) -> Option<String> {
+    let extension = input.extension()?.to_string_lossy();
+    Some(match extension.to_ascii_lowercase().as_str() {
+        "xltx" => "xlsx".to_owned(),
+        "xltm" => "xlsm".to_owned(),
+        _ => extension.into_owned(),
+    })
 }
 
 /// True where `--out` names a file rather than a folder.
@@ -88,13 +98,13 @@ fn output_for(input: &Path, out: Option<&Path>, several: bool) -> Result<Output,
         return Output::named(out);
     }
     if names_a_file(out) {
-        let (have, want) = (out.extension(), input.extension());
-        if !is_dash(input) && have.map(|e| e.to_ascii_lowercase()) != want.map(|e| e.to_ascii_lowercase()) {
+        let have = out.extension().map(|e| e.to_string_lossy().into_owned()).unwrap_or_default();
+        let want = output_extension(input).unwrap_or_default();
+        if !is_dash(input) && !have.eq_ignore_ascii_case(&want) {
             return Err(Failure::Message(format!(
-                "--out {}: {} stays .{}, since the extension follows the content",
+                "--out {}: the output of {} is .{want}, since the extension follows the content",
                 out.display(),
                 input.display(),
-                want.unwrap_or_default().to_string_lossy()
             )));
         }
         return Ok(Output::File(out.to_owned()));
@@ -108,7 +118,10 @@ fn output_for(input: &Path, out: Option<&Path>, several: bool) -> Result<Output,
     let name = match audited_name(input) {
         Ok(path) => path.file_name().unwrap_or_default().to_owned(),
         // An audited copy keeps its name in another folder.
-        Err(_) => input.file_name().unwrap_or_default().to_owned(),
+        Err(_) => {
+            let extension = output_extension(input).unwrap_or_default();
+            input.with_extension(extension).file_name().unwrap_or_default().to_owned()
+        }
     };
     Ok(Output::File(out.join(name)))
 }
@@ -178,6 +191,10 @@ mod tests {
     fn names_follow_the_input() {
         assert_eq!(audited_name(Path::new("a/plan.xlsx")).unwrap(), Path::new("a/plan.audited.xlsx"));
         assert_eq!(audited_name(Path::new("v1.2.xlsm")).unwrap(), Path::new("v1.2.audited.xlsm"));
+        assert_eq!(audited_name(Path::new("plan.xltx")).unwrap(), Path::new("plan.audited.xlsx"));
+        assert_eq!(audited_name(Path::new("plan.XLTM")).unwrap(), Path::new("plan.audited.xlsm"));
+        assert!(output_for(Path::new("a.xltx"), Some(Path::new("o.xlsx")), false).is_ok());
+        assert!(output_for(Path::new("a.xltx"), Some(Path::new("o.xlsm")), false).is_err());
         assert!(audited_name(Path::new("plan.audited.xlsx")).is_err());
         assert!(names_a_file(Path::new("x.XLSX")) && !names_a_file(Path::new("x.d")));
         assert!(output_for(Path::new("a.xlsx"), Some(Path::new("o.xlsx")), true).is_err());

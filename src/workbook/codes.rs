@@ -95,7 +95,7 @@ pub const CODES: &[Code] = codes! {
         "password-protected": "The workbook is protected by a password.",
         "signed": "The workbook is digitally signed, and a fill would break the signature.",
         "strict-format": "The workbook is saved in the strict variant of the format, which is not filled.",
-        "template": "The file is a workbook template, not a workbook.",
+        "template": "The file is a template; what is written from it is a workbook.",
         "truncated": "The end of the file is missing.",
         "unreadable": "Cells, or a file of schedules, cannot be read.",
         "xml-depth": "A part nests its elements deeper than hence reads.",

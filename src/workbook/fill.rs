@@ -19,7 +19,7 @@ use crate::package::{Changes, Package, may_write, same_file, write_atomically};
 use crate::patch::{CellWrite, patch_sheet};
 use crate::plan::{Plan, Stale, Ways, plan_targets};
 use crate::preflight::preflight;
-use crate::problem::{Place, Problem, Result, WorkbookError};
+use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
 use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::{Cell, SheetRange};
 use crate::report::{Report, option_reports};
@@ -106,6 +106,12 @@ pub fn fill_file(
 pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> Result<Filled> {
     let mut problems = preflight(package)?;
     package.graftable().map_err(|problem| WorkbookError::from(*problem))?;
+    if package.is_template() {
+        let message =
+            format!("the file is a template: the output is a workbook (.{})", package.format().extension());
+        let template = Problem::error("template", Place::default(), message);
+        problems.push(Problem { severity: Severity::Note, ..template });
+    }
     let book = Workbook::read(package)?;
     let previous = own::own_sheets(&book);
     let stated = request.replace.as_ref().map(|(_, new)| new).or(request.basis.as_ref());

@@ -229,6 +229,20 @@ def quarters():
     return book, {"B5": 1, "E5": 1.04 ** -0.75, "I5": 1.04 ** -1.75, "J5": 1.04 ** -2.75, "D6": npv}
 
 
+def template():
+    """A template, from which a workbook is made."""
+    book = laid_out(
+        [["Base", 2026, "Basis", "3.5%"], ["Year", 2026, 2027, 2028], ["Works", 9, 8, 7], ["Factor"], ["Costs"]],
+        {
+            "base": "Plan!$B$1", "basis": "Plan!$D$1", "years": "Plan!$B$2:$D$2", "cost_works": "Plan!$B$3:$D$3",
+            "factor": "Plan!$B$4:$D$4", "pv_costs": "Plan!$B$5",
+        },
+    )
+    book.template = True
+    factors = [1.035 ** -t for t in range(3)]
+    return book, {"B4": 1, "C4": factors[1], "D4": factors[2], "B5": 9 + 8 * factors[1] + 7 * factors[2]}
+
+
 def halves():
     """Financial years down a column with blocks; flows at the start; a stream on a basis of its own; no factors."""
     spans = [1, 1, 3, 5]
@@ -259,7 +273,7 @@ if __name__ == "__main__":
     folder = sys.argv[1]
     save(tables(), folder, "tables.xlsx")
     save(from_1904(), folder, "from-1904.xlsx")
-    for make in (months, month_ends, mixed, quarters, halves):
+    for make in (months, month_ends, mixed, quarters, halves, template):
         book, expected = make()
         save(book, folder, f"{make.__name__}.xlsx")
         for cell, value in expected.items():
