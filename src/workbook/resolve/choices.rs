@@ -51,6 +51,9 @@ pub(super) fn build(context: &mut Context, split: &Split, told: Option<&str>) ->
         built.baseline = baseline(context, split);
         check_flows(context, split, &built.choices);
     }
+    for choice in &built.choices {
+        spans::check(context, choice, &built.axes[choice.axis]);
+    }
     targets::check(context, &built.choices, &built.axes);
     built
 }
@@ -87,7 +90,6 @@ fn choice(
     choice.budget = budget(context, split, group, &choice);
     choice.targets = targets::targets(context, &group.named, &choice, axis);
     counted::check(context, &choice);
-    spans::check(context, &choice, axis);
     Some(choice)
 }
 

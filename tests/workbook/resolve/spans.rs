@@ -190,3 +190,21 @@ fn ends_of_half_years_are_middles_and_ends_of_years() {
     }
     assert!(compared >= 20, "{compared} factors");
 }
+
+#[test]
+fn rates_that_all_options_share_are_refused_too() {
+    let option = "A5: 'Works | 1 | 2\nA9: 'NPV";
+    let own = "hence_cost_works B5:C5, hence_npv B9";
+    let found = Small::default()
+        .sheet(
+            "Inputs",
+            "A1: 'Base | 2026\nA2: 'Basis | '3.5%\nA3: 'Span | 1 | 5\nA4: 'Year | 2026 | 2027\nA6: 'Rates",
+        )
+        .names("hence_base B1, hence_basis B2, hence_span B3:C3, hence_years B4:C4, hence_rates B6:C6")
+        .sheet("Wells", option)
+        .own_names(own)
+        .sheet("Pumps", option)
+        .own_names(own)
+        .problems();
+    assert_eq!(found, ["span-role Inputs!B6:C6 [hence_rates]"]);
+}
