@@ -32,6 +32,12 @@
 // The longest array accepted, in elements.
 #define HENCE_LENGTH_MAX 1073741824
 
+// Yearly compounding: a year of waiting divides by 1 + rate.
+#define HENCE_COMPOUNDING_YEARLY 0
+
+// Continuous compounding: a year of waiting multiplies by exp(-rate).
+#define HENCE_COMPOUNDING_CONTINUOUS 1
+
 // Done.
 #define HENCE_OK 0
 
@@ -83,6 +89,18 @@
 // A fault inside the library; nothing was written.
 #define HENCE_ERR_INTERNAL 90
 
+// A flat yearly rate in place of the basis.
+#define HENCE_PARAMETER_RATE 0
+
+// Pure time preference of a basis that states it.
+#define HENCE_PARAMETER_PREFERENCE 1
+
+// Elasticity of marginal utility of a basis that states it.
+#define HENCE_PARAMETER_ELASTICITY 2
+
+// Growth of a basis that states it; of a path that of its first band, the others moving along.
+#define HENCE_PARAMETER_GROWTH 3
+
 // The range that a worksheet function gives back. Opaque and immutable: any number of threads may use one.
 typedef struct hence_answer hence_answer;
 
@@ -122,6 +140,55 @@ typedef struct {
   char message[256];
 } hence_error;
 
+// How values, one a draw, are spread, written into the caller's own struct.
+typedef struct {
+  // In: sizeof(hence_spread), set by the caller.
+  uint32_t struct_size;
+  // Out: their mean.
+  double mean;
+  // Out: the mean's standard error.
+  double mean_error;
+  // Out: their standard deviation; 0 of a single value.
+  double sd;
+  // Out: the least.
+  double lowest;
+  // Out: the greatest.
+  double highest;
+  // Out: the share of values above 0, which is how probable such a value is.
+  double positive;
+  // Out: the standard error of that share.
+  double positive_error;
+} hence_spread;
+
+// What a series of consumption says of its growth, written into the caller's own struct. Every rate is a fraction per
+// year; standard errors bear the name of their figure.
+typedef struct {
+  // In: sizeof(hence_growth), set by the caller.
+  uint32_t struct_size;
+  // Out: 1 where the persistence is known, 0 where growth is the same every year.
+  int32_t has_persistence;
+  // Out: log growth along the straight line through ln c, by least squares.
+  double trend;
+  // Out: its standard error.
+  double trend_error;
+  // Out: the mean of yearly log growth, which depends on the first and the last value only.
+  double mean;
+  // Out: its standard error.
+  double mean_error;
+  // Out: growth along the trend, exp(trend) - 1.
+  double trend_growth;
+  // Out: geometric mean growth, exp(mean) - 1.
+  double mean_growth;
+  // Out: the standard deviation of yearly log growth.
+  double sd;
+  // Out: its standard error.
+  double sd_error;
+  // Out: the first-order autocorrelation of yearly log growth; 0 where it is not known.
+  double persistence;
+  // Out: its standard error; 0 where it is not known.
+  double persistence_error;
+} hence_growth;
+
 #ifdef __cplusplus
 extern "C" {
 #endif // __cplusplus
@@ -134,7 +201,9 @@ uint32_t hence_abi_version(void);
 // Calls a worksheet function, as the add-ins do.
 //
 // What is wrong with an argument becomes an error value in the cells concerned; a status other than HENCE_OK says that
-// the call itself was not sound.
+// the call itself was not sound. The function "WHY" calls another one, and says in words what is wrong.
+//
+// In cells: HENCE.WHY.
 //
 // Arguments: `function` (in, NUL-ended UTF-8, borrowed, not NULL): "FACTOR" or "HENCE.FACTOR", in any case;
 // `arguments` (in, `n` pointers, borrowed with all they point to; NULL only when `n` is 0): a NULL pointer among them
@@ -322,7 +391,8 @@ int32_t hence_forward_rates(const hence_basis *basis,
                             double *rates,
                             hence_error *error);
 
-// Mean yearly rates to the offsets: D(t)^(-1/t) - 1, at 0 its limit, fractions per year.
+// Mean yearly rates to the offsets: D(t)^(-1/t) - 1, at 0 its limit, fractions per year. With continuous compounding the
+// mean rate is ln(1 + this).
 //
 // In cells: HENCE.MEANRATE.
 //
@@ -331,6 +401,88 @@ int32_t hence_mean_rates(const hence_basis *basis,
                          const double *offsets,
                          size_t n,
                          double *rates,
+                         hence_error *error);
+
+// Instantaneous rates at the offsets: -D'(t)/D(t), fractions per year with continuous compounding; at an edge that of the
+// earlier band.
+//
+// In cells: HENCE.INSTANT.
+//
+// Arguments, statuses and threads as hence_factors.
+int32_t hence_instantaneous_rates(const hence_basis *basis,
+                                  const double *offsets,
+                                  size_t n,
+                                  double *rates,
+                                  hence_error *error);
+
+// Net present values of options under seeded draws of the discount rate: in each draw one flat yearly rate, preference +
+// hazard + elasticity x growth, each part drawn from its own distribution.
+//
+// The same seed gives the same draws, to the last bit, on every platform and for any number of threads; draw k does not
+// depend on how many are made.
+//
+// In cells: HENCE.DRAWS.
+//
+// Arguments: `preference`, `hazard`, `elasticity`, `growth` (in, NUL-ended UTF-8, borrowed, not NULL but for `hazard`, where
+// NULL is none): a value ("1%", of the elasticity "1.5", of the hazard also "every 100 years"), "normal mean 1% sd 0.3%", the
+// same with "within 0% to 2%", "uniform 1% to 3%", "triangular 1%, 1.5%, 2%" or "0.3 at 1%, 0.7 at 2%"; `offsets` (in, `n`
+// doubles, years from the base, -10,000 to 10,000); `flows` (in, `rows` x `n` doubles, net, row by row: the option i begins
+// at number i x n); `rows` (in, at least 1); `n` (in; 0 makes every value 0); `count` (in), how many draws, 1 to 10,000,000;
+// `seed` (in); `threads` (in, at least 1) that share the work; `rates` (out, `count` doubles, or NULL where they are not
+// wanted), the rate of each draw; `values` (out, `rows` x `count` doubles, row by row: the draws of option i begin at number
+// i x count); outputs may overlap no other argument; `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP; HENCE_ERR_UTF8 with the byte
+// and HENCE_ERR_SYNTAX with the character as index; HENCE_ERR_NOT_FINITE, HENCE_ERR_DOMAIN with the index of the offset or
+// flow; HENCE_ERR_SHAPE without options or for another number of draws; HENCE_ERR_RANGE for a distribution, and for no
+// threads; HENCE_ERR_NO_MEANING for bounds that keep less than 1% of a normal distribution. Where draws fall outside what a
+// rate line may state, HENCE_ERR_RANGE is about their distribution (or, where only the rate falls outside -50% to 100%,
+// about no argument) with the first such draw as index: draws are never left out quietly. A value too large is
+// HENCE_ERR_NOT_FINITE about no argument, with the draw as index. Threads: any.
+int32_t hence_draws_value(const char *preference,
+                          const char *hazard,
+                          const char *elasticity,
+                          const char *growth,
+                          const double *offsets,
+                          const double *flows,
+                          size_t rows,
+                          size_t n,
+                          size_t count,
+                          uint64_t seed,
+                          uint32_t threads,
+                          double *rates,
+                          double *values,
+                          hence_error *error);
+
+// Percentiles, mean, standard deviation and the share above 0 of values, one a draw.
+//
+// Arguments: `values` (in, `n` doubles, in any order); `n` (in, at least 1); `percentiles` (in, `count` doubles, 0 to 100,
+// in any order; NULL only when `count` is 0); `count` (in); `found` (out, `count` doubles): the value below which as many
+// percent of the values fall, linear between neighbours; `spread` (out, not NULL, with its struct_size set); outputs may
+// overlap no other argument; `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP; HENCE_ERR_NOT_FINITE with the
+// index; HENCE_ERR_RANGE for a percentile, with its index, and for a struct_size that is too small; HENCE_ERR_SHAPE
+// without values. Threads: any.
+int32_t hence_draws_spread(const double *values,
+                           size_t n,
+                           const double *percentiles,
+                           size_t count,
+                           double *found,
+                           hence_spread *spread,
+                           hence_error *error);
+
+// How probable it is that each option ranks first: the share of draws in which its value is above every other's.
+//
+// Arguments: `values` (in, `rows` x `count` doubles, row by row, as hence_draws_value gives them); `rows` (in, at least 1);
+// `count` (in, at least 1); `alone` (out, `rows` doubles), the share of draws in which the option is first alone; `tied`
+// (out, `rows` doubles), in which it is first with another one; outputs may overlap no other argument; `error` (out, may
+// be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP; HENCE_ERR_NOT_FINITE with the
+// index; HENCE_ERR_SHAPE without values. Threads: any.
+int32_t hence_draws_rank(const double *values,
+                         size_t rows,
+                         size_t count,
+                         double *alone,
+                         double *tied,
                          hence_error *error);
 
 // The Ramsey rate rho + eta g, a fraction per year.
@@ -374,6 +526,50 @@ int32_t hence_elasticity_from_taxes(double marginal,
                                     double *elasticity,
                                     hence_error *error);
 
+// The elasticity of marginal utility that several brackets of a tax schedule imply: the mean of what each implies by equal
+// absolute sacrifice, as for hence_elasticity_from_taxes, weighted by taxpayers; a pure number.
+//
+// In cells: HENCE.BRACKETS.
+//
+// Arguments: `marginal`, `average` (in, `n` doubles each, fractions as for hence_elasticity_from_taxes); `weights` (in, `n`
+// doubles, 0 or more): the taxpayers of each bracket, or their share; `n` (in, at least 1); `elasticity` (out, one double,
+// not NULL, may not overlap the inputs); `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP, HENCE_ERR_NOT_FINITE;
+// HENCE_ERR_RANGE for a rate or a weight that cannot be, with its index, and for weights that sum to 0; HENCE_ERR_SHAPE
+// without brackets. Threads: any.
+int32_t hence_elasticity_from_brackets(const double *marginal,
+                                       const double *average,
+                                       const double *weights,
+                                       size_t n,
+                                       double *elasticity,
+                                       hence_error *error);
+
+// The hazard, a fraction per year, of a yearly probability p that benefits end for good: p/(1 - p) with yearly
+// compounding, -ln(1 - p) with continuous.
+//
+// In cells: HENCE.HAZARD.
+//
+// Arguments: `probability` (in), a fraction from 0 to below 1; `compounding` (in), HENCE_COMPOUNDING_..., of the rate that
+// the hazard is part of; `hazard` (out, one double, not NULL); `error` (out, may be NULL).
+// Returns and threads as hence_ramsey_rate.
+int32_t hence_hazard_from_probability(double probability,
+                                      int32_t compounding,
+                                      double *hazard,
+                                      hence_error *error);
+
+// The hazard, a fraction per year, of an expected waiting time until benefits end for good: 1/(years - 1) with yearly
+// compounding, 1/years with continuous.
+//
+// In cells: HENCE.WAITING.
+//
+// Arguments: `years` (in), the expected time, above 1 with yearly compounding, else above 0; `compounding`, `hazard` and
+// `error` as for hence_hazard_from_probability.
+// Returns and threads as hence_ramsey_rate.
+int32_t hence_hazard_from_waiting_time(double years,
+                                       int32_t compounding,
+                                       double *hazard,
+                                       hence_error *error);
+
 // The equity weight of a group: (reference / income)^elasticity, a pure number.
 //
 // In cells: HENCE.WEIGHT.
@@ -398,6 +594,23 @@ int32_t hence_real_rate(double nominal,
                         double inflation,
                         double *rate,
                         hence_error *error);
+
+// Estimates growth of consumption from a series: trend, mean, standard deviation and persistence.
+//
+// In cells: HENCE.GROWTH.
+//
+// Arguments: `consumption` (in, `n` doubles, a value a year, a head and in prices of one year, above 0, in any unit);
+// `years` (in, `n` int32_t, may be NULL), the calendar year of each value, which must follow on each other; `n` (in, at
+// least 4); `growth` (out, not NULL, with its struct_size set, may not overlap the inputs); `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP; HENCE_ERR_RANGE for a
+// struct_size that is too small; HENCE_ERR_SHAPE for fewer than four values; HENCE_ERR_NOT_FINITE, HENCE_ERR_NO_MEANING for
+// a value of 0 or less, and HENCE_ERR_SYNTAX for a year that does not follow the one before it, each with the index.
+// Threads: any.
+int32_t hence_growth_estimate(const double *consumption,
+                              const int32_t *years,
+                              size_t n,
+                              hence_growth *growth,
+                              hence_error *error);
 
 // Present value of one stream: the sum of D(offset) x flow, correctly rounded from the factors.
 //
@@ -470,6 +683,189 @@ int32_t hence_irr_all(const double *offsets,
 //
 // Returns: static, never NULL, not to be freed. Threads: any.
 const char *hence_status_name(int32_t code);
+
+// Every value of a parameter of the basis, rising, at which the net present value is zero, all else as it is. For two
+// options to swap, give the flows of one less those of the other.
+//
+// In cells: HENCE.SWITCH.
+//
+// Arguments: `basis` (in, not NULL; of the rate it does not matter which); `parameter` (in), HENCE_PARAMETER_...; `offsets`
+// (in, `n` doubles, years from the base, in any order); `flows` (in, `n` doubles, net flows); `n` (in, at least 1);
+// `lowest`, `highest` (in), the interval: -0.5 and 1 as a rule, of the elasticity 0 and 20; what leaves rates of -90% and
+// below is left out of it; `values` (out, `capacity` doubles; NULL only when `capacity` is 0); `capacity` (in); `count`
+// (out, one size_t, not NULL): how many there are, 0 for none; outputs may overlap no other argument; `error` (out, may be
+// NULL).
+// Returns HENCE_OK; HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP, HENCE_ERR_NOT_FINITE;
+// HENCE_ERR_RANGE for a parameter that is not known and for an interval that is empty; HENCE_ERR_CAPACITY with the number
+// of values as index; HENCE_ERR_SHAPE without flows; HENCE_ERR_DOMAIN for an offset where the curve is not defined;
+// HENCE_ERR_UNSUPPORTED where the basis is not stated by the parameter; HENCE_ERR_NO_MEANING where every flow is 0, or
+// where the flows do not settle how many values there are; the message then says where. Threads: any.
+int32_t hence_switching_values(const hence_basis *basis,
+                               int32_t parameter,
+                               const double *offsets,
+                               const double *flows,
+                               size_t n,
+                               double lowest,
+                               double highest,
+                               double *values,
+                               size_t capacity,
+                               size_t *count,
+                               hence_error *error);
+
+// The multiple of one stream at which the net present value is zero: 1 - net/stream; 1 is the stream as it is.
+//
+// In cells: HENCE.MULTIPLIER.
+//
+// Arguments: `net` (in), the net present value, or that of one option less another's; `stream` (in), the part of it that
+// is multiplied, with its sign in the net: a cost is negative; `multiplier` (out, one double, not NULL); `error` (out, may
+// be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_NOT_FINITE; HENCE_ERR_NO_MEANING for a stream that adds
+// nothing, so that no multiple of it changes the sign. Threads: any.
+int32_t hence_switching_multiplier(double net,
+                                   double stream,
+                                   double *multiplier,
+                                   hence_error *error);
+
+// The utility of a consumption: (c^(1-eta) - 1)/(1 - eta), and ln c at an elasticity eta of 1.
+//
+// In cells: HENCE.UTILITY.
+//
+// Arguments: `consumption` (in), a head and year, above 0 in any unit of money; `elasticity` (in) of marginal utility, 0
+// to 20; `utility` (out, one double, not NULL), 0 at a consumption of 1; `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_NOT_FINITE, HENCE_ERR_RANGE; HENCE_ERR_NO_MEANING for a
+// consumption of 0 or less. Threads: any.
+int32_t hence_utility(double consumption,
+                      double elasticity,
+                      double *utility,
+                      hence_error *error);
+
+// The utility of one more unit of consumption: c^-eta.
+//
+// In cells: HENCE.MARGINAL.
+//
+// Arguments: `consumption` and `elasticity` (in) as for hence_utility; `utility` (out, one double, not NULL), per unit of
+// consumption; `error` (out, may be NULL).
+// Returns and threads as hence_utility.
+int32_t hence_marginal_utility(double consumption,
+                               double elasticity,
+                               double *utility,
+                               hence_error *error);
+
+// The welfare of a path of consumption: the sum of utilities over (1 + rho)^offset with yearly compounding, times
+// exp(-rho offset) with continuous. Only which of two paths is better, and ratios of differences, have a meaning.
+//
+// In cells: HENCE.WELFARE.
+//
+// Arguments: `consumption` (in, `n` doubles, a head, above 0); `offsets` (in, `n` doubles, years from the base, in any
+// order); `n` (in; 0 gives 0); `rho` (in), pure time preference and hazard together, a fraction per year, above -1 with
+// yearly compounding; `elasticity` (in) of marginal utility, 0 to 20; `compounding` (in), HENCE_COMPOUNDING_...;
+// `welfare` (out, one double, not NULL, may not overlap the inputs); `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP, HENCE_ERR_RANGE;
+// HENCE_ERR_NOT_FINITE, and HENCE_ERR_NO_MEANING for a consumption of 0 or less, with the index. Threads: any.
+int32_t hence_welfare(const double *consumption,
+                      const double *offsets,
+                      size_t n,
+                      double rho,
+                      double elasticity,
+                      int32_t compounding,
+                      double *welfare,
+                      hence_error *error);
+
+// The discount factors along a path of consumption, what one small unit at each date is worth at the base:
+// (base/c)^eta over (1 + rho)^offset with yearly compounding, times exp(-rho offset) with continuous.
+//
+// Arguments: `consumption`, `offsets`, `n`, `rho`, `elasticity`, `compounding` and `error` as for hence_welfare; `base`
+// (in), the consumption at the base, above 0; `factors` (out, `n` doubles, may not overlap the inputs).
+// Returns and threads as hence_welfare.
+int32_t hence_welfare_factors(const double *consumption,
+                              const double *offsets,
+                              size_t n,
+                              double base,
+                              double rho,
+                              double elasticity,
+                              int32_t compounding,
+                              double *factors,
+                              hence_error *error);
+
+// What must be received later so that giving up an amount now leaves welfare as it was. For small amounts the
+// rate of return between the two is the Ramsey rate.
+//
+// In cells: HENCE.COMPENSATION.
+//
+// Arguments: `amount` (in), given up now; negative where it is received now and given up later; `now`, `later` (in),
+// consumption at the two dates before the shift, above 0, in the unit of the amount; `years` (in) from the one to the
+// other; `rho`, `elasticity` and `compounding` (in) as for hence_welfare; `received` (out, one double, not NULL), in the
+// unit of the amount; `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_NOT_FINITE, HENCE_ERR_RANGE; HENCE_ERR_NO_MEANING for a
+// consumption of 0 or less, where the amount leaves nothing, and where no amount later is enough. Threads: any.
+int32_t hence_compensation(double amount,
+                           double now,
+                           double later,
+                           double years,
+                           double rho,
+                           double elasticity,
+                           int32_t compounding,
+                           double *received,
+                           hence_error *error);
+
+// The exact value of flows that are not small against consumption: the amount at the base, without the project, that
+// changes welfare as much as they do (equivalent variation). The sum of factor x flow is its limit for small flows.
+//
+// In cells: HENCE.EXACT.
+//
+// Arguments: `flows` (in, `n` doubles), benefits less costs in the unit of consumption, both totals or both a head;
+// `consumption` (in, `n` doubles, above 0), at the date of each flow without the project; `factors` (in, `n` doubles, 0 or
+// more), the discount factor of each flow, as hence_factors and hence_welfare_factors give them; `n` (in; 0 gives 0);
+// `base` (in), the consumption at the base, above 0; `elasticity` (in) of marginal utility, 0 to 20; `value` (out, one
+// double, not NULL, may not overlap the inputs), money at the base; `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP, HENCE_ERR_NOT_FINITE,
+// HENCE_ERR_RANGE; HENCE_ERR_NO_MEANING with the index for a factor below 0 and for a consumption of 0 or less, with the
+// flow or without; without an index where no amount at the base is worth as much. Threads: any.
+int32_t hence_equivalent_variation(const double *flows,
+                                   const double *consumption,
+                                   const double *factors,
+                                   size_t n,
+                                   double base,
+                                   double elasticity,
+                                   double *value,
+                                   hence_error *error);
+
+// The most that could be paid at the base for flows that are not small against consumption: the amount which, taken from
+// those who have the project, leaves them as well off as without it (compensating variation); negative for what must be
+// received. Not above hence_equivalent_variation.
+//
+// Arguments: `flows`, `consumption`, `factors`, `n`, `base`, `elasticity`, `value` and `error` as for
+// hence_equivalent_variation; `base_flow` (in), the flow at the base itself, which the flows hold too; 0 where none
+// stands there.
+// Returns as hence_equivalent_variation; HENCE_ERR_NO_MEANING also where the base flow leaves no consumption. Threads: any.
+int32_t hence_compensating_variation(const double *flows,
+                                     const double *consumption,
+                                     const double *factors,
+                                     size_t n,
+                                     double base,
+                                     double base_flow,
+                                     double elasticity,
+                                     double *value,
+                                     hence_error *error);
+
+// The consumption which, had everybody that much, would give the welfare of an unequal distribution:
+// (sum of share x c^(1-eta))^(1/(1-eta)), the geometric mean at an elasticity eta of 1. Divided by the
+// mean it is 1 less Atkinson's index of inequality.
+//
+// In cells: HENCE.EQUIVALENT.
+//
+// Arguments: `consumption` (in, `n` doubles, above 0), of each group a head; `shares` (in, `n` doubles, 0 or more, summing
+// to 1), of each group in the population; `n` (in, at least 1); `elasticity` (in) of marginal utility, 0 to 20;
+// `equivalent` (out, one double, not NULL, may not overlap the inputs), a head; `error` (out, may be NULL).
+// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP, HENCE_ERR_NOT_FINITE;
+// HENCE_ERR_NO_MEANING for a consumption of 0 or less, with the index; HENCE_ERR_RANGE for the elasticity, for a negative
+// share, with the index, and for shares that do not sum to 1; HENCE_ERR_SHAPE without groups. Threads: any.
+int32_t hence_equally_distributed_equivalent(const double *consumption,
+                                             const double *shares,
+                                             size_t n,
+                                             double elasticity,
+                                             double *equivalent,
+                                             hence_error *error);
 
 #ifdef __cplusplus
 }  // extern "C"

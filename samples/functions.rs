@@ -10,13 +10,14 @@ use zip::write::SimpleFileOptions;
 
 const BASE: f64 = 2026.0;
 const YEARS: usize = 61;
+const RAMSEY: &str = "preference 1.5%, elasticity 1, growth 2%";
 /// The row of the first year.
 const FIRST: usize = 7;
 
 /// The row of the basis in words, and the cells that it is spread over.
-const WORDS: usize = 20;
+const WORDS: usize = 27;
 const MERGED: &str =
-    "<mergeCells count=\"2\"><mergeCell ref=\"D3:K3\"/><mergeCell ref=\"I20:K27\"/></mergeCells>";
+    "<mergeCells count=\"2\"><mergeCell ref=\"D3:K3\"/><mergeCell ref=\"I27:K34\"/></mergeCells>";
 
 /// Numbers of the cell formats in STYLES.
 mod style {
@@ -123,6 +124,8 @@ fn cells() -> Vec<Placed> {
     put('B', 3, style::INPUT, text("uk-2003"));
     put('A', 4, style::PLAIN, text("Base year"));
     put('B', 4, style::INPUT, Cell::Number(BASE));
+    put('A', 5, style::PLAIN, text("A rate by its parts"));
+    put('B', 5, style::INPUT, text(RAMSEY));
     for (column, heading) in [
         ('A', "Year"),
         ('B', "Offset"),
@@ -258,6 +261,43 @@ fn cells() -> Vec<Placed> {
         "HENCE.REAL(6%,2%)".into(),
         answer("REAL", &[number(0.06), number(0.02)]),
     );
+    result(
+        "Growth at which it is worth nothing",
+        style::PERCENT,
+        format!("HENCE.SWITCH($B$5,\"growth\",{},{},$B$4)", range('A'), range('E')),
+        answer("SWITCH", &[one(text(RAMSEY)), one(text("growth")), years(), net(), base()]),
+    );
+    result(
+        "Multiple of the costs that it could bear",
+        style::FACTOR,
+        format!("HENCE.MULTIPLIER(J{},-J{FIRST})", FIRST + 2),
+        answer("MULTIPLIER", &[one(value(net()).remove(0)), one(negative(value(costs()).remove(0)))]),
+    );
+    let elasticity = "uniform 1 to 1.5";
+    result(
+        "Mean value where the rate is uncertain",
+        style::AMOUNT,
+        format!("HENCE.DRAWS(1.5%,\"{elasticity}\",2%,{},{},$B$4)", range('A'), range('E')),
+        answer("DRAWS", &[number(0.015), one(text(elasticity)), number(0.02), years(), net(), base()]),
+    );
+    result(
+        "Instantaneous rate in year 60",
+        style::PERCENT,
+        "HENCE.INSTANT($B$3,60)".into(),
+        answer("INSTANT", &[basis(), number(60.0)]),
+    );
+    result(
+        "Hazard of an end in 200 years",
+        style::PERCENT,
+        "HENCE.WAITING(200)".into(),
+        answer("WAITING", &[number(200.0)]),
+    );
+    result(
+        "Due in 10 years for 1,000 given up now",
+        style::AMOUNT,
+        "HENCE.COMPENSATION(1000,26000,31700,10,1.5%,1.5)".into(),
+        answer("COMPENSATION", &[1000.0, 26000.0, 31700.0, 10.0, 0.015, 1.5].map(number)),
+    );
     let words = format!("HENCE.EXPLAIN($B$3,{},{},$B$4)", range('A'), range('E'));
     for (column, row, formula, held) in [
         ('D', 3, "HENCE.SCHEDULE($B$3)".to_owned(), answer("SCHEDULE", &[basis()])),
@@ -267,6 +307,10 @@ fn cells() -> Vec<Placed> {
         all.push(Placed { column, row, style: style::WRAPPED, formula: Some(formula), area: None, held });
     }
     all
+}
+
+fn negative(cell: Cell<'static>) -> Cell<'static> {
+    if let Cell::Number(number) = cell { Cell::Number(-number) } else { cell }
 }
 
 /// The sheet's part of the package.

@@ -1,13 +1,24 @@
 //! The checks that every numerical function makes of its arguments, with one wording.
 
+use multiversion::multiversion;
+
 use crate::{Error, ErrorKind, Result};
 
 /// Refuses a NaN or an infinity in an array, naming its index.
 pub(crate) fn finite_all(argument: &'static str, values: &[f64]) -> Result<()> {
+    if all_finite(values) {
+        return Ok(());
+    }
     match values.iter().position(|value| !value.is_finite()) {
         Some(index) => Err(not_finite(argument, values[index]).with_index(index)),
         None => Ok(()),
     }
+}
+
+/// Whether no number is NaN or infinite.
+#[multiversion(targets = "simd")]
+pub(crate) fn all_finite(values: &[f64]) -> bool {
+    values.iter().fold(true, |all, value| all & value.is_finite())
 }
 
 /// Refuses a NaN or an infinity.

@@ -212,7 +212,7 @@ static INVERSE_ODDS: [Dd; 9] = {
 };
 
 /// Adding this rounds a number below 2^51 to a whole one, which then stands in the low bits.
-const ROUNDER: f64 = 6_755_399_441_055_744.0;
+pub(crate) const ROUNDER: f64 = 6_755_399_441_055_744.0;
 
 /// y as whole 64ths and a rest of at most 1/128.
 #[inline(always)]

@@ -1,5 +1,6 @@
 //! The sum to infinity of equal or growing flows under a curve, for tails that go on for ever.
 
+use crate::Curve;
 use crate::curve::Parts;
 use crate::{Error, ErrorKind, Result, sum};
 
@@ -22,18 +23,25 @@ impl Perpetuity {
     ///
     /// Where the curve's rate is constant in the end, the flows up to its last edge are summed one by one and the
     /// rest is a geometric series; a mixture is the sum of its components' values.
-    pub fn value(&self, parts: &Parts) -> Result<f64> {
+    pub fn value(&self, curve: &Curve) -> Result<f64> {
+        if let Some(components) = curve.components() {
+            let held = components.iter().filter(|component| component.0 > 0.0);
+            let values: Result<Vec<f64>> =
+                held.map(|(weight, curve)| Ok(weight * self.value(curve)?)).collect();
+            let weights: Vec<f64> = components.iter().map(|component| component.0).collect();
+            return Ok(sum(&values?) / sum(&weights));
+        }
+        let parts = curve.parts();
         match parts {
-            Parts::Mixture(components) => {
-                let held = components.iter().filter(|component| component.0 > 0.0);
-                let values: Result<Vec<f64>> =
-                    held.map(|(weight, part)| Ok(weight * self.value(part)?)).collect();
-                let weights: Vec<f64> = components.iter().map(|component| component.0).collect();
-                Ok(sum(&values?) / sum(&weights))
+            Parts::Gamma { mean, sd } if *sd == 0.0 => {
+                self.geometric((f64::NEG_INFINITY, *mean), |t| Ok(-t * mean))
             }
-            Parts::Gamma { mean, sd } if *sd == 0.0 => self.value(&Parts::Continuous { rate: *mean }),
             Parts::Gamma { mean, sd } => self.gamma(*mean, *sd),
-            _ => self.geometric(parts),
+            Parts::PersistentGrowth { .. } | Parts::GrowthRegimes { .. } => {
+                let settled = curve.settled().ok_or_else(unsettled)?;
+                self.geometric(settled, |t| Ok(-t * curve.mean_rate_continuous(t)?))
+            }
+            _ => self.geometric(last_rate(parts)?, |t| Ok(log_factor(parts, t))),
         }
     }
 
@@ -46,8 +54,8 @@ impl Perpetuity {
         k * self.every * self.growth.ln_1p()
     }
 
-    fn geometric(&self, parts: &Parts) -> Result<f64> {
-        let (edge, rate) = last_rate(parts)?;
+    /// From the last edge and the continuous rate after it, and ln D(t).
+    fn geometric(&self, (edge, rate): (f64, f64), log_factor: impl Fn(f64) -> Result<f64>) -> Result<f64> {
         // Logarithm of the ratio of one flow's value to the next one's.
         let fall = self.every * (rate - self.growth.ln_1p());
         if fall <= 0.0 {
@@ -67,9 +75,9 @@ impl Perpetuity {
         let mut k = 0.0;
         while self.offset(k) <= edge {
             k += 1.0;
-            values.push((log_factor(parts, self.offset(k)) + self.log_growth(k)).exp());
+            values.push((log_factor(self.offset(k))? + self.log_growth(k)).exp());
         }
-        let last = (log_factor(parts, self.offset(k)) + self.log_growth(k)).exp();
+        let last = (log_factor(self.offset(k))? + self.log_growth(k)).exp();
         values.push(last / fall.exp_m1());
         Ok(sum(&values))
     }
@@ -184,14 +192,19 @@ fn last_rate(parts: &Parts) -> Result<(f64, f64)> {
             let (edge, growth) = after(edges, growth, *open)?;
             Ok((edge, rho.ln_1p() + elasticity * growth))
         }
-        Parts::PersistentGrowth { .. } | Parts::GrowthRegimes { .. } => {
-            let message = "under growth that persists or switches no year's rate is the last, so a tail is not \
-                           summed for ever";
-            Err(Error::new(ErrorKind::Unsupported, "tail", message).with_hint("a tail that ends: to 2300"))
-        }
         Parts::Table(_) => Err(ends()),
-        Parts::Gamma { .. } | Parts::Mixture(_) => unreachable!("summed by their own formulas"),
+        Parts::Gamma { .. }
+        | Parts::Mixture(_)
+        | Parts::PersistentGrowth { .. }
+        | Parts::GrowthRegimes { .. } => unreachable!("summed by their own formulas"),
     }
+}
+
+/// Growth in states whose yearly rates never come near to one rate.
+fn unsettled() -> Error {
+    let message =
+        "the yearly rates under this growth in states do not settle, so a tail is not summed for ever";
+    Error::new(ErrorKind::Unsupported, "tail", message).with_hint("a tail that ends: to 2300")
 }
 
 fn ends() -> Error {

@@ -4,6 +4,10 @@
 //! every product of two doubles, so nothing is lost on the way and one rounding is left for the end. The idea of a
 //! long accumulator is U. Kulisch's ("Computer Arithmetic and Validity", 2nd edition, 2013, chapter 8).
 
+mod compensated;
+
+pub(crate) use compensated::Compensated;
+
 /// The weight of the register's lowest bit, 2^-2176: below the last bit of the smallest product, 2^-2148.
 const LOWEST: i64 = -2176;
 /// Limbs of 32 bits; the highest bit, 2^2207, leaves room for 2^159 products of the largest doubles.
@@ -181,11 +185,15 @@ fn rounded(limbs: &[i64; LIMBS]) -> f64 {
 /// assert_eq!(hence_core::sum(&[1e16, 1.0, -1e16]), 1.0);
 /// ```
 pub fn sum(terms: &[f64]) -> f64 {
-    let mut sum = ExactSum::new();
-    for &term in terms {
-        sum.add(term);
-    }
-    sum.total()
+    let mut quick = Compensated::new();
+    quick.add(terms);
+    quick.total().unwrap_or_else(|| {
+        let mut sum = ExactSum::new();
+        for &term in terms {
+            sum.add(term);
+        }
+        sum.total()
+    })
 }
 
 /// The sum of the products a_i b_i, rounded once, whatever their order.
@@ -204,9 +212,13 @@ pub fn sum(terms: &[f64]) -> f64 {
 /// ```
 pub fn dot(a: &[f64], b: &[f64]) -> f64 {
     assert_eq!(a.len(), b.len(), "a sum of products needs two arrays of the same length");
-    let mut sum = ExactSum::new();
-    for (&x, &y) in a.iter().zip(b) {
-        sum.add_product(x, y);
-    }
-    sum.total()
+    let mut quick = Compensated::new();
+    quick.add_products(a, b);
+    quick.total().unwrap_or_else(|| {
+        let mut sum = ExactSum::new();
+        for (&x, &y) in a.iter().zip(b) {
+            sum.add_product(x, y);
+        }
+        sum.total()
+    })
 }

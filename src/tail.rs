@@ -83,14 +83,16 @@ impl Tail {
     /// **Edge cases**: an end before the next flow is due gives 0.
     ///
     /// **Accuracy**: a tail that ends is summed flow by flow, exactly but for its factors and growth. For ever: 1e-12
-    /// relative, by a geometric series from where the curve's rate stays constant, under a gamma curve by the
+    /// relative, by a geometric series from where the curve's rate stays constant (under growth that persists or switches,
+    /// to within rounding), under a gamma curve by the
     /// Hurwitz zeta function.
     ///
     /// **Errors**: `NotFinite`; `NeedsBase`; `Diverges` for ever, unless the curve's last forward rate exceeds x (of a
     /// mixture, the lowest of its components' last rates; a gamma curve's is 0, and it converges for x = 0 only if its
     /// mean exceeds its standard deviation); `OutsideDomain` for ever under a table or a curve that ends, and past the
     /// end of such a curve; `NoMeaning` where the tail ends before t; `RateRange` for fields outside their limits;
-    /// `Unsupported` for ever under a gamma curve where -0.01% < x < 0, and under growth that persists or switches.
+    /// `Unsupported` for ever under a gamma curve where -0.01% < x < 0, and under growth in states whose yearly rates
+    /// never settle (states that take turns for ever, or that are never left).
     ///
     /// **Source**: geometric series, as for the growing perpetuity F (1+x)/(r - x), M. J. Gordon, The Investment,
     /// Financing and Valuation of the Corporation, 1962; gamma curve, M. L. Weitzman, Gamma Discounting, American Economic
@@ -225,7 +227,7 @@ impl Tail {
     /// The value of further flows without end, per unit of the last flow.
     fn for_ever(&self, curve: &Curve, last: f64) -> Result<f64> {
         let perpetuity = Perpetuity { start: last, growth: self.growth, every: f64::from(self.every) };
-        let value = perpetuity.value(curve.parts())?;
+        let value = perpetuity.value(curve)?;
         // The curve's own word on offsets it does not cover.
         curve.factor(last + f64::from(self.every))?;
         check::result("tail", value)

@@ -113,7 +113,9 @@ unsafe fn read<'a>(range: *const hence_range, index: usize) -> Result<Option<Ran
 /// Calls a worksheet function, as the add-ins do.
 ///
 /// What is wrong with an argument becomes an error value in the cells concerned; a status other than HENCE_OK says that
-/// the call itself was not sound.
+/// the call itself was not sound. The function "WHY" calls another one, and says in words what is wrong.
+///
+/// In cells: HENCE.WHY.
 ///
 /// Arguments: `function` (in, NUL-ended UTF-8, borrowed, not NULL): "FACTOR" or "HENCE.FACTOR", in any case;
 /// `arguments` (in, `n` pointers, borrowed with all they point to; NULL only when `n` is 0): a NULL pointer among them

@@ -7,7 +7,7 @@ use libc::c_char;
 use crate::error::Failure;
 use crate::status::{
     HENCE_ERR_ALIGNMENT, HENCE_ERR_CAPACITY, HENCE_ERR_LENGTH, HENCE_ERR_NOT_FINITE, HENCE_ERR_NULL,
-    HENCE_ERR_OVERLAP, HENCE_ERR_UTF8,
+    HENCE_ERR_OVERLAP, HENCE_ERR_RANGE, HENCE_ERR_UTF8,
 };
 
 /// The longest array accepted, in elements.
@@ -87,6 +87,24 @@ pub(crate) unsafe fn numbers<'a>(
     Ok(slice)
 }
 
+/// Borrowed input arrays of finite numbers, of one length, which is the argument behind them. `first` counts from 1.
+///
+/// # Safety
+/// Each pointer is NULL, or readable for `length` doubles until the call returns.
+pub(crate) unsafe fn alike<'a, const N: usize>(
+    pointers: [*const f64; N],
+    length: usize,
+    first: i32,
+) -> Result<[&'a [f64]; N], Failure> {
+    self::length(length, first + N as i32)?;
+    let mut slices: [&[f64]; N] = [&[]; N];
+    for ((slice, pointer), argument) in slices.iter_mut().zip(pointers).zip(first..) {
+        // SAFETY: the caller's contract, passed on.
+        *slice = unsafe { numbers(pointer, length, argument) }?;
+    }
+    Ok(slices)
+}
+
 /// A finite number.
 pub(crate) fn finite(number: f64, argument: i32) -> Result<(), Failure> {
     if number.is_finite() {
@@ -156,6 +174,21 @@ pub(crate) unsafe fn fill(
         unsafe { std::ptr::copy_nonoverlapping(results.as_ptr(), out, length) };
     }
     Ok(())
+}
+
+/// The size of a struct that the caller supplies for results, from its first field: as large as the library's, or larger.
+///
+/// # Safety
+/// `out` is NULL, or points to a struct whose first field, a `u32`, says how many bytes of it are the caller's.
+pub(crate) unsafe fn sized<T>(out: *mut T, argument: i32) -> Result<u32, Failure> {
+    output(out, 1, argument)?;
+    // SAFETY: not NULL and aligned (checked); the size comes first by the caller's contract.
+    let size = unsafe { out.cast::<u32>().read() };
+    if (size as usize) < size_of::<T>() {
+        let message = format!("struct_size is {size}, due are {}", size_of::<T>());
+        return Err(Failure::new(HENCE_ERR_RANGE, argument, message));
+    }
+    Ok(size)
 }
 
 /// A borrowed text.

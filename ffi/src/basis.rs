@@ -13,6 +13,7 @@ use crate::status::{HENCE_ERR_RANGE, HENCE_ERR_SCHEDULE};
 /// A parsed basis with its curve. Opaque and immutable: any number of threads may use one.
 pub struct hence_basis {
     pub(crate) basis: Basis,
+    pub(crate) at: Where,
     pub(crate) curve: Curve,
 }
 
@@ -104,7 +105,7 @@ unsafe fn parse(line: *const c_char, at: Where, out: *mut *mut hence_basis, plac
     arguments::output(out, 1, places.out)?;
     let basis = Basis::parse(line, &CATALOGUE).map_err(|e| Failure::core(&e, 1))?;
     let curve = basis.curve(&at).map_err(|e| places.failure(&e))?;
-    let handle = Box::into_raw(Box::new(hence_basis { basis, curve }));
+    let handle = Box::into_raw(Box::new(hence_basis { basis, at, curve }));
     // SAFETY: `out` is not NULL and aligned (checked), and writable by the caller's contract.
     unsafe { out.write(handle) };
     Ok(())

@@ -80,7 +80,8 @@ pub unsafe extern "C" fn hence_forward_rates(
     unsafe { each(basis, offsets, n, rates, error, scalar(Curve::forward_rate)) }
 }
 
-/// Mean yearly rates to the offsets: D(t)^(-1/t) - 1, at 0 its limit, fractions per year.
+/// Mean yearly rates to the offsets: D(t)^(-1/t) - 1, at 0 its limit, fractions per year. With continuous compounding the
+/// mean rate is ln(1 + this).
 ///
 /// In cells: HENCE.MEANRATE.
 ///
@@ -95,4 +96,22 @@ pub unsafe extern "C" fn hence_mean_rates(
 ) -> i32 {
     // SAFETY: the caller's contract, passed on.
     unsafe { each(basis, offsets, n, rates, error, scalar(Curve::mean_rate)) }
+}
+
+/// Instantaneous rates at the offsets: -D'(t)/D(t), fractions per year with continuous compounding; at an edge that of the
+/// earlier band.
+///
+/// In cells: HENCE.INSTANT.
+///
+/// Arguments, statuses and threads as hence_factors.
+#[unsafe(no_mangle)]
+pub unsafe extern "C" fn hence_instantaneous_rates(
+    basis: *const hence_basis,
+    offsets: *const f64,
+    n: usize,
+    rates: *mut f64,
+    error: *mut hence_error,
+) -> i32 {
+    // SAFETY: the caller's contract, passed on.
+    unsafe { each(basis, offsets, n, rates, error, scalar(Curve::instantaneous_rate)) }
 }

@@ -66,6 +66,15 @@ impl Failure {
     }
 }
 
+/// Turns a library error into a failure: `names` are the library's names of the arguments in their order, "" where it has
+/// none. An error about none of them is about no argument.
+pub(crate) fn named(names: &[&str]) -> impl Fn(hence_core::Error) -> Failure {
+    move |error| {
+        let place = names.iter().position(|name| *name == error.argument());
+        Failure::core(&error, place.map_or(0, |place| place as i32 + 1))
+    }
+}
+
 pub(crate) type Guarded = Result<(), Failure>;
 
 /// Runs the body of an export: no panic crosses into the caller, and the error struct is filled.

@@ -1,30 +1,9 @@
 //! Where a rate comes from, and single rates and weights.
 
-use crate::arguments;
-use crate::error::{Failure, guard, hence_error};
+use hence_core::TaxBracket;
 
-/// One number from some numbers: `names` are the library's names of the arguments, in order; the output comes next.
-///
-/// # Safety
-/// `out` is NULL or writable; `error` as for [`guard`].
-unsafe fn single(
-    names: &[&str],
-    out: *mut f64,
-    error: *mut hence_error,
-    compute: impl Fn() -> hence_core::Result<f64>,
-) -> i32 {
-    let body = || {
-        arguments::output(out, 1, names.len() as i32 + 1)?;
-        let place = |e: &hence_core::Error| names.iter().position(|name| *name == e.argument());
-        let argument = |e: &hence_core::Error| place(e).map_or(0, |place| place as i32 + 1);
-        let result = compute().map_err(|e| Failure::core(&e, argument(&e)))?;
-        // SAFETY: `out` is not NULL and aligned (checked), and writable by the caller's contract.
-        unsafe { out.write(result) };
-        Ok(())
-    };
-    // SAFETY: the caller's contract for `error`.
-    unsafe { guard(error, body) }
-}
+use crate::error::{hence_error, named};
+use crate::results::{compounding, over, single};
 
 /// The Ramsey rate rho + eta g, a fraction per year.
 ///
@@ -40,8 +19,9 @@ pub unsafe extern "C" fn hence_ramsey_rate(
     rate: *mut f64,
     error: *mut hence_error,
 ) -> i32 {
+    let names = ["rho", "elasticity", "g"];
     // SAFETY: the caller's contracts, passed on.
-    unsafe { single(&["rho", "elasticity", "g"], rate, error, || hence_core::ramsey_rate(rho, eta, g)) }
+    unsafe { single(4, rate, error, || hence_core::ramsey_rate(rho, eta, g).map_err(named(&names))) }
 }
 
 /// The Ramsey rate where growth is uncertain and independent from year to year: rho + eta g - eta (eta + 1) sd^2 / 2, a
@@ -61,9 +41,11 @@ pub unsafe extern "C" fn hence_ramsey_rate_uncertain(
     rate: *mut f64,
     error: *mut hence_error,
 ) -> i32 {
-    let compute = || hence_core::ramsey_rate_uncertain(rho, eta, g, sd);
+    let names = ["rho", "elasticity", "g", "sd"];
     // SAFETY: the caller's contracts, passed on.
-    unsafe { single(&["rho", "elasticity", "g", "sd"], rate, error, compute) }
+    unsafe {
+        single(5, rate, error, || hence_core::ramsey_rate_uncertain(rho, eta, g, sd).map_err(named(&names)))
+    }
 }
 
 /// The elasticity of marginal utility that tax rates imply by equal absolute sacrifice: ln(1 - marginal) / ln(1 -
@@ -82,9 +64,92 @@ pub unsafe extern "C" fn hence_elasticity_from_taxes(
     elasticity: *mut f64,
     error: *mut hence_error,
 ) -> i32 {
-    let compute = || hence_core::elasticity_from_taxes(marginal, average);
+    let names = ["marginal", "average"];
     // SAFETY: the caller's contracts, passed on.
-    unsafe { single(&["marginal", "average"], elasticity, error, compute) }
+    unsafe {
+        single(3, elasticity, error, || {
+            hence_core::elasticity_from_taxes(marginal, average).map_err(named(&names))
+        })
+    }
+}
+
+/// The elasticity of marginal utility that several brackets of a tax schedule imply: the mean of what each implies by equal
+/// absolute sacrifice, as for hence_elasticity_from_taxes, weighted by taxpayers; a pure number.
+///
+/// In cells: HENCE.BRACKETS.
+///
+/// Arguments: `marginal`, `average` (in, `n` doubles each, fractions as for hence_elasticity_from_taxes); `weights` (in, `n`
+/// doubles, 0 or more): the taxpayers of each bracket, or their share; `n` (in, at least 1); `elasticity` (out, one double,
+/// not NULL, may not overlap the inputs); `error` (out, may be NULL).
+/// Returns HENCE_OK, HENCE_ERR_NULL, HENCE_ERR_ALIGNMENT, HENCE_ERR_LENGTH, HENCE_ERR_OVERLAP, HENCE_ERR_NOT_FINITE;
+/// HENCE_ERR_RANGE for a rate or a weight that cannot be, with its index, and for weights that sum to 0; HENCE_ERR_SHAPE
+/// without brackets. Threads: any.
+#[unsafe(no_mangle)]
+pub unsafe extern "C" fn hence_elasticity_from_brackets(
+    marginal: *const f64,
+    average: *const f64,
+    weights: *const f64,
+    n: usize,
+    elasticity: *mut f64,
+    error: *mut hence_error,
+) -> i32 {
+    // An error about the brackets as a whole is about their weights, or their number.
+    let names = if n == 0 { ["", "", "", "brackets"] } else { ["marginal", "average", "brackets", ""] };
+    // SAFETY: the caller's contracts, passed on.
+    unsafe {
+        over([marginal, average, weights], n, 5, elasticity, error, |[marginal, average, weights]| {
+            let bracket =
+                |i: usize| TaxBracket { marginal: marginal[i], average: average[i], weight: weights[i] };
+            let brackets: Vec<TaxBracket> = (0..n).map(bracket).collect();
+            hence_core::elasticity_from_tax_brackets(&brackets).map_err(named(&names))
+        })
+    }
+}
+
+/// The hazard, a fraction per year, of a yearly probability p that benefits end for good: p/(1 - p) with yearly
+/// compounding, -ln(1 - p) with continuous.
+///
+/// In cells: HENCE.HAZARD.
+///
+/// Arguments: `probability` (in), a fraction from 0 to below 1; `compounding` (in), HENCE_COMPOUNDING_..., of the rate that
+/// the hazard is part of; `hazard` (out, one double, not NULL); `error` (out, may be NULL).
+/// Returns and threads as hence_ramsey_rate.
+#[unsafe(no_mangle)]
+pub unsafe extern "C" fn hence_hazard_from_probability(
+    probability: f64,
+    compounding: i32,
+    hazard: *mut f64,
+    error: *mut hence_error,
+) -> i32 {
+    let compute = || {
+        let compounding = self::compounding(compounding, 2)?;
+        hence_core::hazard_from_probability(probability, compounding).map_err(named(&["probability"]))
+    };
+    // SAFETY: the caller's contracts, passed on.
+    unsafe { single(3, hazard, error, compute) }
+}
+
+/// The hazard, a fraction per year, of an expected waiting time until benefits end for good: 1/(years - 1) with yearly
+/// compounding, 1/years with continuous.
+///
+/// In cells: HENCE.WAITING.
+///
+/// Arguments: `years` (in), the expected time, above 1 with yearly compounding, else above 0; `compounding`, `hazard` and
+/// `error` as for hence_hazard_from_probability.
+/// Returns and threads as hence_ramsey_rate.
+#[unsafe(no_mangle)]
+pub unsafe extern "C" fn hence_hazard_from_waiting_time(
+    years: f64,
+    compounding: i32,
+    hazard: *mut f64,
+    error: *mut hence_error,
+) -> i32 {
+    let compute = || {
+        let compounding = self::compounding(compounding, 2)?;
+        hence_core::hazard_from_waiting_time(years, compounding).map_err(named(&["years"]))
+    };
+    // SAFETY: the caller's contracts, passed on.
+    unsafe { single(3, hazard, error, compute) }
 }
 
 /// The equity weight of a group: (reference / income)^elasticity, a pure number.
@@ -102,9 +167,13 @@ pub unsafe extern "C" fn hence_equity_weight(
     weight: *mut f64,
     error: *mut hence_error,
 ) -> i32 {
-    let compute = || hence_core::equity_weight(income, reference, elasticity);
+    let names = ["income", "reference", "elasticity"];
     // SAFETY: the caller's contracts, passed on.
-    unsafe { single(&["income", "reference", "elasticity"], weight, error, compute) }
+    unsafe {
+        single(4, weight, error, || {
+            hence_core::equity_weight(income, reference, elasticity).map_err(named(&names))
+        })
+    }
 }
 
 /// The real rate behind a nominal rate: (1 + nominal) / (1 + inflation) - 1, a fraction per year.
@@ -121,7 +190,7 @@ pub unsafe extern "C" fn hence_real_rate(
     rate: *mut f64,
     error: *mut hence_error,
 ) -> i32 {
-    let compute = || hence_core::real_rate(nominal, inflation);
+    let names = ["nominal", "inflation"];
     // SAFETY: the caller's contracts, passed on.
-    unsafe { single(&["nominal", "inflation"], rate, error, compute) }
+    unsafe { single(3, rate, error, || hence_core::real_rate(nominal, inflation).map_err(named(&names))) }
 }

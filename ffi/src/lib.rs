@@ -10,12 +10,17 @@ mod arguments;
 mod basis;
 mod calendar;
 mod curves;
+mod draws;
 mod error;
 mod evidence;
+mod growth;
 mod measures;
+mod results;
 mod status;
+mod switching;
 #[cfg(test)]
 mod tests;
+mod welfare;
 pub mod worksheet;
 
 pub use answer::{
@@ -29,14 +34,26 @@ pub use basis::{
     hence_basis_parse_at, hence_basis_timing, hence_schedule_line,
 };
 pub use calendar::{hence_offsets_from_dates, hence_offsets_from_years};
-pub use curves::{hence_factors, hence_forward_rates, hence_mean_rates};
+pub use curves::{hence_factors, hence_forward_rates, hence_instantaneous_rates, hence_mean_rates};
+pub use draws::{hence_draws_rank, hence_draws_spread, hence_draws_value, hence_spread};
 pub use error::hence_error;
 pub use evidence::{
-    hence_elasticity_from_taxes, hence_equity_weight, hence_ramsey_rate, hence_ramsey_rate_uncertain,
-    hence_real_rate,
+    hence_elasticity_from_brackets, hence_elasticity_from_taxes, hence_equity_weight,
+    hence_hazard_from_probability, hence_hazard_from_waiting_time, hence_ramsey_rate,
+    hence_ramsey_rate_uncertain, hence_real_rate,
 };
+pub use growth::{hence_growth, hence_growth_estimate};
 pub use measures::{hence_annual_equivalent, hence_irr_all, hence_present_value, hence_present_values};
+pub use results::{HENCE_COMPOUNDING_CONTINUOUS, HENCE_COMPOUNDING_YEARLY};
 pub use status::*;
+pub use switching::{
+    HENCE_PARAMETER_ELASTICITY, HENCE_PARAMETER_GROWTH, HENCE_PARAMETER_PREFERENCE, HENCE_PARAMETER_RATE,
+    hence_switching_multiplier, hence_switching_values,
+};
+pub use welfare::{
+    hence_compensating_variation, hence_compensation, hence_equally_distributed_equivalent,
+    hence_equivalent_variation, hence_marginal_utility, hence_utility, hence_welfare, hence_welfare_factors,
+};
 
 /// The version of the binary interface: raised when a function, struct or constant changes its meaning.
 pub const HENCE_ABI_VERSION: u32 = 1;

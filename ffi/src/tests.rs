@@ -217,3 +217,76 @@ fn a_curve_that_cannot_be_made_names_its_argument() {
     let plain = refused!(hence_basis_parse(points.as_ptr(), &mut basis));
     assert_eq!(plain, (HENCE_ERR_CONTEXT, 1, -1));
 }
+
+/// Structs of the caller's that grow: one of a later version keeps its end, one that is too small stays as it was.
+#[test]
+fn a_struct_of_results_says_its_size() {
+    const SIZE: usize = size_of::<hence_growth>();
+    let series = [1.0, 2.0, 4.0, 8.0];
+    let mut storage = [f64::NAN; SIZE / 8 + 1];
+    let growth = storage.as_mut_ptr().cast::<hence_growth>();
+    for (size, status) in [(SIZE - 8, (HENCE_ERR_RANGE, 4, -1)), (SIZE + 8, (HENCE_OK, 0, -1))] {
+        // SAFETY: within the array, which is larger than the struct, and aligned for it.
+        unsafe { (&raw mut (*growth).struct_size).write(size as u32) };
+        assert_eq!(refused!(hence_growth_estimate(series.as_ptr(), null(), 4, growth)), status);
+        // SAFETY: as above; every bit pattern is a number.
+        let found = unsafe { growth.read() };
+        assert_eq!(found.struct_size as usize, size);
+        assert_eq!(found.trend_growth == 1.0, status.0 == HENCE_OK);
+        assert_eq!(found.trend.is_nan(), status.0 != HENCE_OK);
+    }
+    assert!(storage[SIZE / 8].is_nan());
+}
+
+#[test]
+fn paths_and_draws_go_in_and_come_out() {
+    let (consumption, offsets) = ([2.0, 4.0], [0.0, 1.0]);
+    let mut value = -7.0;
+    let welfare = refused!(hence_welfare(
+        consumption.as_ptr(),
+        offsets.as_ptr(),
+        2,
+        0.25,
+        2.0,
+        HENCE_COMPOUNDING_YEARLY,
+        &mut value
+    ));
+    assert_eq!((welfare, value), ((HENCE_OK, 0, -1), 1.1));
+    let flows = [0.0, 1.0, 0.0, 2.0];
+    let (mut rates, mut values) = ([-7.0; 2], [-7.0; 4]);
+    let drawn = refused!(hence_draws_value(
+        c"100%".as_ptr(),
+        null(),
+        c"1".as_ptr(),
+        c"0%".as_ptr(),
+        offsets.as_ptr(),
+        flows.as_ptr(),
+        2,
+        2,
+        2,
+        1,
+        1,
+        rates.as_mut_ptr(),
+        values.as_mut_ptr()
+    ));
+    assert_eq!((drawn, rates, values), ((HENCE_OK, 0, -1), [1.0; 2], [0.5, 0.5, 1.0, 1.0]));
+    let (mut alone, mut tied) = ([-7.0; 2], [-7.0; 2]);
+    let rank = refused!(hence_draws_rank(values.as_ptr(), 2, 2, alone.as_mut_ptr(), tied.as_mut_ptr()));
+    assert_eq!((rank, alone, tied), ((HENCE_OK, 0, -1), [0.0, 1.0], [0.0, 0.0]));
+
+    let basis = Held::new(c"preference 1%, elasticity 1, growth 2%");
+    let (net, mut found, mut count) = ([-100.0, 200.0], [-7.0; 2], 77);
+    let switching = refused!(hence_switching_values(
+        basis.0,
+        HENCE_PARAMETER_RATE,
+        offsets.as_ptr(),
+        net.as_ptr(),
+        2,
+        -0.5,
+        1.0,
+        found.as_mut_ptr(),
+        2,
+        &mut count
+    ));
+    assert_eq!((switching, count, found), ((HENCE_OK, 0, -1), 1, [1.0, -7.0]));
+}

@@ -1,10 +1,11 @@
 //! The one declaration of the command line: help, man page and completions derive from it.
 
 use std::ffi::{OsStr, OsString};
-use std::num::NonZeroUsize;
+use std::num::{NonZeroU64, NonZeroUsize};
 use std::path::PathBuf;
 
 use clap::{Args, CommandFactory, Parser, Subcommand, ValueEnum};
+use hence_workbook::planfile::{EXAMPLE, KEYS};
 
 /// Fills an appraisal workbook with discount factors and present values, and audits it.
 ///
@@ -60,6 +61,8 @@ pub enum Command {
     Schedules(Schedules),
     /// List the roles that a workbook's names declare, or suggest names for one that has none
     Names(Names),
+    /// Propose a plan file, which says what is where in workbooks without names
+    Plan(Plan),
     /// Write a ready-named appraisal workbook to type into
     Start(Start),
     /// Print the manual page
@@ -71,13 +74,71 @@ pub enum Command {
     },
 }
 
+// What several commands take, written once. Plain comments: clap would print others as the help of the command.
+
+#[derive(Debug, Args)]
+pub struct Source {
+    /// The workbook; - reads it from standard input
+    #[arg(value_name = "BOOK")]
+    pub book: PathBuf,
+}
+
+#[derive(Debug, Args)]
+pub struct Roles {
+    /// Give a role to cells without a defined name: --role years="Sheet1!C4:Z4"
+    #[arg(long = "role", value_name = "ROLE=RANGE")]
+    pub roles: Vec<String>,
+    /// A plan file (.toml) that says what is where in a workbook without names; `hence plan` proposes one
+    #[arg(long, value_name = "FILE")]
+    pub plan: Option<PathBuf>,
+}
+
+#[derive(Debug, Args)]
+pub struct OfSeveral {
+    /// Which of several appraisals in the plan
+    #[arg(long, value_name = "NAME", requires = "plan")]
+    pub appraisal: Option<String>,
+}
+
+#[derive(Debug, Args)]
+pub struct Against {
+    /// A rate line or schedule to value it on besides the one it declares and the companion of that; may be given
+    /// several times
+    #[arg(long, value_name = "LINE|ID")]
+    pub against: Vec<String>,
+}
+
+#[derive(Debug, Args)]
+pub struct Signature {
+    /// A text for the output: the date or state of the data
+    #[arg(long, value_name = "TEXT")]
+    pub as_of: Option<String>,
+    /// A text for the output: who ran it
+    #[arg(long, value_name = "TEXT")]
+    pub by: Option<String>,
+}
+
+#[derive(Debug, Args)]
+pub struct Document {
+    /// Print one JSON document
+    #[arg(long)]
+    pub json: bool,
+}
+
+#[derive(Debug, Args)]
+pub struct Overwrite {
+    /// Replace an existing output
+    #[arg(long)]
+    pub force: bool,
+}
+
 #[derive(Debug, Args)]
 pub struct Fill {
-    /// The workbooks (.xlsx, .xlsm) or templates (.xltx, .xltm); - reads one from standard input
-    #[arg(required = true, value_name = "BOOK")]
+    /// The workbooks (.xlsx, .xlsm) or templates (.xltx, .xltm), or folders to find them in; - reads one from standard input
+    #[arg(required = true, value_name = "BOOK|DIR")]
     pub books: Vec<PathBuf>,
     /// Where to write: a file when it ends in .xlsx or .xlsm (one workbook only), - for standard output, else a
-    /// folder
+    /// folder, with the same folders in it as in the one that is walked
     #[arg(long, value_name = "FILE|DIR")]
     pub out: Option<PathBuf>,
     /// Value on this rate line or schedule, and write it into the basis cell
@@ -86,30 +147,50 @@ pub struct Fill {
     /// Change the basis from OLD to NEW; a workbook on another basis is refused
     #[arg(long, value_name = "OLD=NEW", conflicts_with = "basis")]
     pub replace: Option<String>,
-    /// Give a role to cells without a defined name: --role years="Sheet1!C4:Z4"
-    #[arg(long = "role", value_name = "ROLE=RANGE")]
-    pub roles: Vec<String>,
+    /// Have LibreOffice compute what the fill leaves without a result, so that previewers and scripts see numbers
+    #[arg(long)]
+    pub settle: bool,
+    /// Value at this base (a year, a financial year or a date), and write it into the base cell
+    #[arg(long, value_name = "YEAR")]
+    pub base: Option<String>,
+    /// Value in these prices, `real 2026`, and write them into the price basis cell; the workbook has to say how prices
+    /// change
+    #[arg(long, value_name = "PRICES")]
+    pub prices: Option<String>,
+    #[command(flatten)]
+    pub roles: Roles,
     /// What to write into the targets
     #[arg(long, value_name = "WHAT", default_value = "formulas")]
     pub write: WriteWhat,
     /// Replace formulas found in target cells, where they are not hence's own
     #[arg(long)]
     pub replace_formulas: bool,
-    /// A rate line or schedule to value it on besides, for the audit's sensitivity sheet
-    #[arg(long, value_name = "LINE|ID")]
-    pub against: Vec<String>,
-    /// A text for the audit summary: the date or state of the data
-    #[arg(long, value_name = "TEXT")]
-    pub as_of: Option<String>,
-    /// A text for the audit summary: who ran it
-    #[arg(long, value_name = "TEXT")]
-    pub by: Option<String>,
-    /// Print one JSON document
+    #[command(flatten)]
+    pub against: Against,
+    #[command(flatten)]
+    pub signature: Signature,
+    /// Write a workbook that says what moved and which decisions flipped, with a bridge for every option
+    #[arg(long, value_name = "FILE.xlsx")]
+    pub summary: Option<PathBuf>,
+    /// Write a line of JSON for each workbook, with hashes of input, output, basis and what was asked for
+    #[arg(long, value_name = "FILE")]
+    pub ledger: Option<PathBuf>,
+    /// Go on with a run that was stopped: keep the outputs that are as it would make them, make the others
     #[arg(long)]
-    pub json: bool,
-    /// Replace an existing output
-    #[arg(long)]
-    pub force: bool,
+    pub resume: bool,
+    /// Workbooks to fill at a time (else as many as the machine runs at once)
+    #[arg(long, value_name = "N")]
+    pub jobs: Option<NonZeroUsize>,
+    /// The most memory for one workbook, in MB (else 1024); not on Windows and macOS
+    #[arg(long, value_name = "MB")]
+    pub memory_limit: Option<NonZeroU64>,
+    /// The most time for one workbook, in seconds (else 600)
+    #[arg(long, value_name = "SECONDS")]
+    pub time_limit: Option<NonZeroU64>,
+    #[command(flatten)]
+    pub document: Document,
+    #[command(flatten)]
+    pub overwrite: Overwrite,
 }
 
 /// What goes into target cells.
@@ -123,28 +204,32 @@ pub enum WriteWhat {
 
 #[derive(Debug, Args)]
 pub struct Check {
-    /// The workbook; - reads it from standard input
-    #[arg(value_name = "BOOK")]
-    pub book: PathBuf,
-    /// Give a role to cells without a defined name
-    #[arg(long = "role", value_name = "ROLE=RANGE")]
-    pub roles: Vec<String>,
-    /// Print one JSON document
-    #[arg(long)]
-    pub json: bool,
+    /// Workbooks, and folders of them; - reads one from standard input
+    #[arg(value_name = "BOOK|DIR", required = true)]
+    pub books: Vec<PathBuf>,
+    #[command(flatten)]
+    pub roles: Roles,
+    #[command(flatten)]
+    pub of: OfSeveral,
+    #[command(flatten)]
+    pub document: Document,
+    /// Write a marked copy (.xlsx, .xlsm): the findings on a sheet of their own and as notes on their cells; one workbook only
+    #[arg(long, value_name = "FILE")]
+    pub out: Option<PathBuf>,
+    #[command(flatten)]
+    pub overwrite: Overwrite,
 }
 
 #[derive(Debug, Args)]
 pub struct Compare {
-    /// The workbook; - reads it from standard input
-    #[arg(value_name = "BOOK")]
-    pub book: PathBuf,
-    /// Rate lines or schedules to value it on, besides the one it declares and the companion of that; several may follow
-    #[arg(long, value_name = "LINE|ID")]
-    pub against: Vec<String>,
-    /// Give a role to cells without a defined name
-    #[arg(long = "role", value_name = "ROLE=RANGE")]
-    pub roles: Vec<String>,
+    #[command(flatten)]
+    pub source: Source,
+    #[command(flatten)]
+    pub against: Against,
+    #[command(flatten)]
+    pub roles: Roles,
+    #[command(flatten)]
+    pub of: OfSeveral,
     /// Map which option is best where, over two parts of a Ramsey basis
     #[arg(long, value_name = "PARTS")]
     pub map: Option<MapOver>,
@@ -157,12 +242,10 @@ pub struct Compare {
     /// Comma-separated values
     #[arg(long, conflicts_with = "json")]
     pub csv: bool,
-    /// Print one JSON document
-    #[arg(long)]
-    pub json: bool,
-    /// Replace an existing output
-    #[arg(long)]
-    pub force: bool,
+    #[command(flatten)]
+    pub document: Document,
+    #[command(flatten)]
+    pub overwrite: Overwrite,
 }
 
 /// The two parts of the rate that a map is over.
@@ -178,33 +261,26 @@ pub enum MapOver {
 
 #[derive(Debug, Args)]
 pub struct Brief {
-    /// The workbook; - reads it from standard input
-    #[arg(value_name = "BOOK")]
-    pub book: PathBuf,
+    #[command(flatten)]
+    pub source: Source,
     /// The page to write: .html, or .md for Markdown; - for HTML on standard output
     #[arg(long, value_name = "FILE")]
     pub out: PathBuf,
     /// The question on the page; else the workbook's title, else one made from the names of the options
     #[arg(long, value_name = "TEXT")]
     pub question: Option<String>,
-    /// Rate lines or schedules to hold the result against; several may follow
-    #[arg(long, value_name = "LINE|ID")]
-    pub against: Vec<String>,
-    /// Give a role to cells without a defined name
-    #[arg(long = "role", value_name = "ROLE=RANGE")]
-    pub roles: Vec<String>,
-    /// A text for the foot of the page: the date or state of the data
-    #[arg(long, value_name = "TEXT")]
-    pub as_of: Option<String>,
-    /// A text for the foot of the page: who ran it
-    #[arg(long, value_name = "TEXT")]
-    pub by: Option<String>,
-    /// Print one JSON document
-    #[arg(long)]
-    pub json: bool,
-    /// Replace an existing output
-    #[arg(long)]
-    pub force: bool,
+    #[command(flatten)]
+    pub against: Against,
+    #[command(flatten)]
+    pub roles: Roles,
+    #[command(flatten)]
+    pub of: OfSeveral,
+    #[command(flatten)]
+    pub signature: Signature,
+    #[command(flatten)]
+    pub document: Document,
+    #[command(flatten)]
+    pub overwrite: Overwrite,
 }
 
 #[derive(Debug, Args)]
@@ -227,9 +303,8 @@ pub struct Curve {
     /// Comma-separated values
     #[arg(long, conflicts_with = "json")]
     pub csv: bool,
-    /// Print one JSON document
-    #[arg(long)]
-    pub json: bool,
+    #[command(flatten)]
+    pub document: Document,
 }
 
 #[derive(Debug, Args)]
@@ -239,9 +314,8 @@ pub struct Curve {
                         0.7 at 2%`. What is left out is taken from the workbook's own Ramsey rule."
 )]
 pub struct Draws {
-    /// The workbook; - reads it from standard input
-    #[arg(value_name = "BOOK")]
-    pub book: PathBuf,
+    #[command(flatten)]
+    pub source: Source,
     /// Pure time preference: a distribution, or a value such as 1%
     #[arg(long, value_name = "DISTRIBUTION")]
     pub preference: Option<String>,
@@ -266,15 +340,15 @@ pub struct Draws {
     /// The percentiles to print
     #[arg(long, value_name = "P,P,...", value_delimiter = ',', default_value = "5,25,50,75,95")]
     pub percentiles: Vec<f64>,
-    /// Give a role to cells without a defined name
-    #[arg(long = "role", value_name = "ROLE=RANGE")]
-    pub roles: Vec<String>,
+    #[command(flatten)]
+    pub roles: Roles,
+    #[command(flatten)]
+    pub of: OfSeveral,
     /// Every draw as comma-separated values: its parts, its rate, the net present value of each option as it stands
     #[arg(long, conflicts_with = "json")]
     pub csv: bool,
-    /// Print one JSON document
-    #[arg(long)]
-    pub json: bool,
+    #[command(flatten)]
+    pub document: Document,
 }
 
 #[derive(Debug, Args)]
@@ -326,12 +400,10 @@ pub struct Rate {
     /// The year to cite the schedule file by (else this year)
     #[arg(long, requires = "schedule")]
     pub year: Option<i32>,
-    /// Print one JSON document
-    #[arg(long)]
-    pub json: bool,
-    /// Replace an existing schedule file
-    #[arg(long)]
-    pub force: bool,
+    #[command(flatten)]
+    pub document: Document,
+    #[command(flatten)]
+    pub overwrite: Overwrite,
 }
 
 /// Which estimate of a series is its growth.
@@ -347,28 +419,44 @@ pub enum GrowthBy {
 pub struct Schedules {
     /// The schedule to print
     pub id: Option<String>,
-    /// Print one JSON document
-    #[arg(long)]
-    pub json: bool,
+    #[command(flatten)]
+    pub document: Document,
 }
 
 #[derive(Debug, Args)]
 pub struct Names {
-    /// The workbook; - reads it from standard input
-    #[arg(value_name = "BOOK")]
-    pub book: PathBuf,
+    #[command(flatten)]
+    pub source: Source,
     /// Find years, flows and factors from headings and shapes, and write names into a copy
     #[arg(long, requires = "out")]
     pub suggest: bool,
     /// The copy to write; - for standard output
     #[arg(long, value_name = "COPY", requires = "suggest")]
     pub out: Option<PathBuf>,
-    /// Print one JSON document
-    #[arg(long)]
-    pub json: bool,
-    /// Replace an existing copy
-    #[arg(long)]
-    pub force: bool,
+    #[command(flatten)]
+    pub document: Document,
+    #[command(flatten)]
+    pub overwrite: Overwrite,
+}
+
+#[derive(Debug, Args)]
+#[command(
+    after_help = "The years, flows, factors and results that headings and shapes show stand in the plan with the \
+                  reason; what was not found is a line to fill in.",
+    after_long_help = format!("A plan:\n\n{}\nIts keys:\n\n{}", indented(EXAMPLE), indented(KEYS))
+)]
+pub struct Plan {
+    #[command(flatten)]
+    pub source: Source,
+    /// The plan to write (.toml); else it is printed
+    #[arg(long, value_name = "FILE")]
+    pub out: Option<PathBuf>,
+    #[command(flatten)]
+    pub overwrite: Overwrite,
+}
+
+fn indented(text: &str) -> String {
+    text.lines().map(|line| format!("  {line}\n")).collect()
 }
 
 #[derive(Debug, Args)]
@@ -376,9 +464,8 @@ pub struct Start {
     /// The workbook to write (.xlsx); - for standard output
     #[arg(value_name = "FILE")]
     pub file: PathBuf,
-    /// Replace an existing file
-    #[arg(long)]
-    pub force: bool,
+    #[command(flatten)]
+    pub overwrite: Overwrite,
 }
 
 /// A rate line may begin with a minus sign and a digit; anything else that begins with one is a slip in an option.

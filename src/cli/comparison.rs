@@ -47,13 +47,18 @@ pub fn json(found: &Comparison) -> String {
             })
         })
         .collect();
+    // One name; a list of those that are equally good.
+    let all = |options: &[usize]| match options {
+        [one] => json!(name(*one)),
+        several => json!(several.iter().map(|i| name(*i)).collect::<Vec<_>>()),
+    };
     let changes: Vec<Value> = found
         .changes
         .iter()
         .map(|change| {
             json!({
-                "parameter": change.parameter.to_string(), "value": change.at, "below": name(change.from),
-                "above": name(change.to)
+                "parameter": change.parameter.to_string(), "value": change.at, "below": all(&change.from),
+                "above": all(&change.to)
             })
         })
         .collect();

@@ -1,13 +1,25 @@
 //! Where workbooks come from: files, or standard input for `-`.
 
 use std::io::Read;
-use std::path::Path;
+use std::path::{Path, PathBuf};
 
+use hence_workbook::older::OldFormat;
 use hence_workbook::package::{MAX_FILE, Package};
 use hence_workbook::problem::{Place, Problem, Result};
 
+use crate::shelf::values::values;
+
 /// What stands for standard input or output.
 pub const DASH: &str = "-";
+
+/// A workbook to be read.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Input {
+    /// The file.
+    pub path: PathBuf,
+    /// Where a folder was walked: the folders in it that lead to the file. None for a workbook that was named.
+    pub inside: Option<PathBuf>,
+}
 
 /// Whether a path stands for standard input or output.
 pub fn is_dash(path: &Path) -> bool {
@@ -19,15 +31,20 @@ pub fn shown(path: &Path) -> String {
     if is_dash(path) { "standard input".to_owned() } else { path.display().to_string() }
 }
 
-/// Opens a workbook for reading.
+/// Opens a workbook for reading; one of an older format by its values, which a process with limits takes out of it.
 pub fn open(path: &Path) -> Result<Package> {
-    if !is_dash(path) {
-        return Package::open(path);
+    let (name, bytes) = if is_dash(path) {
+        let mut bytes = Vec::new();
+        let read = std::io::stdin().lock().take(MAX_FILE + 1).read_to_end(&mut bytes);
+        read.map_err(|error| {
+            Problem::error("cannot-read", Place::default(), format!("standard input cannot be read: {error}"))
+        })?;
+        ("standard input".to_owned(), bytes)
+    } else {
+        (Package::name_of(path), Package::read(path)?)
+    };
+    if OldFormat::of(&bytes).is_some() {
+        return values(&name, &bytes);
     }
-    let mut bytes = Vec::new();
-    let read = std::io::stdin().lock().take(MAX_FILE + 1).read_to_end(&mut bytes);
-    read.map_err(|error| {
-        Problem::error("cannot-read", Place::default(), format!("standard input cannot be read: {error}"))
-    })?;
-    Package::from_bytes("standard input", bytes)
+    Package::from_bytes(&name, bytes)
 }

@@ -3,7 +3,8 @@
 use std::collections::BTreeMap;
 
 use hence_workbook::problem::{Problem, Severity};
-use hence_workbook::report::{Exact, OptionReport, Report, Status};
+use hence_workbook::report::{Exact, OptionReport, Status};
+use hence_workbook::shelf::Record;
 use serde::Serialize;
 
 #[derive(Serialize)]
@@ -28,12 +29,23 @@ pub struct FilledBook {
     pub output: Option<String>,
     pub status: Status,
     pub options: Vec<FilledOption>,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub appraisals: Vec<FilledAppraisal>,
     pub problems: Vec<Found>,
+}
+
+/// One of several appraisals in a workbook; its options bear its name.
+#[derive(Serialize)]
+pub struct FilledAppraisal {
+    pub appraisal: String,
+    pub verdict: String,
 }
 
 #[derive(Serialize)]
 pub struct FilledOption {
     pub option: String,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub appraisal: Option<String>,
     pub npv: f64,
     pub pv_benefits: f64,
     pub pv_costs: f64,
@@ -64,6 +76,7 @@ impl From<&OptionReport> for FilledOption {
         let totals = option.totals();
         FilledOption {
             option: option.name.clone(),
+            appraisal: option.appraisal.clone(),
             npv: totals.npv,
             pv_benefits: totals.pv_benefits,
             pv_costs: totals.pv_costs,
@@ -90,25 +103,23 @@ impl From<&Problem> for Found {
 }
 
 impl FilledBook {
-    /// A workbook that was filled.
-    pub fn filled(input: String, output: String, report: &Report) -> Self {
+    /// A workbook of a run, filled or not.
+    pub fn of(record: &Record) -> Self {
         FilledBook {
-            input,
-            output: Some(output),
-            status: report.status(),
-            options: report.options.iter().map(FilledOption::from).collect(),
-            problems: report.problems.iter().map(Found::from).collect(),
-        }
-    }
-
-    /// A workbook that was not.
-    pub fn failed(input: String, problems: &[Problem]) -> Self {
-        FilledBook {
-            input,
-            output: None,
-            status: Status::Failed,
-            options: Vec::new(),
-            problems: problems.iter().map(Found::from).collect(),
+            input: record.input.clone(),
+            output: record.output.clone(),
+            status: record.status,
+            options: record.report.options.iter().map(FilledOption::from).collect(),
+            appraisals: record
+                .report
+                .appraisals
+                .iter()
+                .map(|appraisal| FilledAppraisal {
+                    appraisal: appraisal.name.clone(),
+                    verdict: appraisal.verdict.clone(),
+                })
+                .collect(),
+            problems: record.report.problems.iter().map(Found::from).collect(),
         }
     }
 }

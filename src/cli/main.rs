@@ -5,11 +5,14 @@ mod commands;
 mod comparison;
 mod input;
 mod json;
+mod ledger;
+mod limits;
 mod manual;
 mod numbers;
 mod outputs;
 mod progress;
 mod render;
+mod shelf;
 mod terminal;
 
 use std::process::ExitCode;
@@ -54,6 +57,8 @@ pub enum Failure {
     BrokenPipe,
     /// In words.
     Message(String),
+    /// By a signal.
+    Stopped(i32),
 }
 
 impl From<std::io::Error> for Failure {
@@ -67,7 +72,11 @@ impl From<std::io::Error> for Failure {
 }
 
 fn main() -> ExitCode {
-    let arguments = args::prepared(std::env::args_os().collect());
+    let arguments: Vec<_> = std::env::args_os().collect();
+    if shelf::child::is_asked_for(&arguments) {
+        return shelf::child::run(&arguments);
+    }
+    let arguments = args::prepared(arguments);
     let command = Cli::command().color(args::color_asked(&arguments));
     let cli = match Cli::from_arg_matches(&command.get_matches_from(arguments)) {
         Ok(cli) => cli,
@@ -82,6 +91,7 @@ fn main() -> ExitCode {
             terminal.complain(&message);
             Outcome::CouldNotRun.into()
         }
+        Err(Failure::Stopped(signal)) => limits::end_by(signal),
     }
 }
 
@@ -96,6 +106,7 @@ fn run(cli: &Cli, terminal: &Terminal) -> Result<Outcome, Failure> {
         Command::Rate(rate) => commands::rate::run(rate, terminal),
         Command::Schedules(schedules) => commands::schedules::run(schedules, &cli.schedules),
         Command::Names(names) => commands::names::run(names, terminal),
+        Command::Plan(plan) => commands::plan::run(plan, terminal),
         Command::Start(start) => commands::start::run(start, terminal),
         Command::Man => printed(&manual::manual()?),
         Command::Completions { shell } => {

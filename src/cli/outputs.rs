@@ -1,12 +1,17 @@
 //! Where outputs go: beside the input, into a folder, to the file that was named, or to standard output.
 
+use std::collections::BTreeMap;
+use std::ffi::OsStr;
 use std::io::{IsTerminal, Write};
 use std::path::{Path, PathBuf};
 
-use hence_workbook::package::same_file;
+use hence_workbook::older::OldFormat;
+use hence_workbook::package::{Identity, may_write, same_file};
+use hence_workbook::problem::{Place, Problem, Result as BookResult};
 
 use crate::Failure;
-use crate::input::{DASH, is_dash};
+use crate::input::{DASH, Input, is_dash};
+use crate::shelf::walk::AUDITED;
 
 /// Where one output goes.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -33,6 +38,17 @@ impl Output {
         Ok(Output::Stream)
     }
 
+    /// Refused where it would be the input, which is never written, or an existing file without `--force`.
+    pub fn may_write(&self, input: &Path, force: bool) -> BookResult<()> {
+        let Output::File(path) = self else { return Ok(()) };
+        if !is_dash(input) && same_file(input, path) {
+            let message = format!("the output {} is the input, which is never written", path.display());
+            let problem = Problem::error("output-is-input", Place::default(), message);
+            return Err(problem.hint("give --out another name").into());
+        }
+        may_write(path, force)
+    }
+
     /// As it is shown.
     pub fn shown(&self) -> String {
         match self {
@@ -52,26 +68,30 @@ pub fn stream(bytes: &[u8]) -> Result<(), Failure> {
 
 /// `NAME.audited.xlsx` beside the input.
 fn audited_name(input: &Path) -> Result<PathBuf, Failure> {
-    let stem = input.file_stem().unwrap_or_default().to_string_lossy();
-    if stem.ends_with(".audited") {
+    let mut name = input.file_stem().unwrap_or_default().to_owned();
+    if name.to_string_lossy().ends_with(AUDITED) {
         return Err(Failure::Message(format!(
             "{}: this is an audited copy, and the input is never written\nTry: --out with another name, or fill \
              the workbook it was made from",
             input.display()
         )));
     }
-    let extension = output_extension(input).map(|e| format!(".{e}")).unwrap_or_default();
-    Ok(input.with_file_name(format!("{stem}.audited{extension}")))
+    name.push(AUDITED);
+    if let Some(extension) = extension(input) {
+        name.push(".");
+        name.push(extension);
+    }
+    Ok(input.with_file_name(name))
 }
 
-/// The extension of what is made from a file: that of a workbook, where the file is a template.
-fn output_extension(input: &Path) -> Option<String> {
-    let extension = input.extension()?.to_string_lossy();
-    Some(match extension.to_ascii_lowercase().as_str() {
-        "xltx" => "xlsx".to_owned(),
-        "xltm" => "xlsm".to_owned(),
-        _ => extension.into_owned(),
-    })
+/// The extension of an output: the input's, but for a template, and for one of which only the values are read.
+fn extension(input: &Path) -> Option<&OsStr> {
+    let own = input.extension()?;
+    if own.eq_ignore_ascii_case("xltm") {
+        return Some(OsStr::new("xlsm"));
+    }
+    let other = OldFormat::has_extension(own) || own.eq_ignore_ascii_case("xltx");
+    Some(if other { OsStr::new("xlsx") } else { own })
 }
 
 /// True where `--out` names a file rather than a folder.
@@ -79,8 +99,9 @@ fn names_a_file(out: &Path) -> bool {
     out.extension().is_some_and(|e| e.eq_ignore_ascii_case("xlsx") || e.eq_ignore_ascii_case("xlsm"))
 }
 
-/// The output of one input.
-fn output_for(input: &Path, out: Option<&Path>, several: bool) -> Result<Output, Failure> {
+/// The output of one input: under `out` in the same folders as under the one that was walked.
+fn output_for(input: &Input, out: Option<&Path>, several: bool) -> Result<Output, Failure> {
+    let Input { path: input, inside } = input;
     let Some(out) = out else {
         return if is_dash(input) {
             Output::named(Path::new(DASH))
@@ -98,13 +119,13 @@ fn output_for(input: &Path, out: Option<&Path>, several: bool) -> Result<Output,
         return Output::named(out);
     }
     if names_a_file(out) {
-        let have = out.extension().map(|e| e.to_string_lossy().into_owned()).unwrap_or_default();
-        let want = output_extension(input).unwrap_or_default();
-        if !is_dash(input) && !have.eq_ignore_ascii_case(&want) {
+        let (have, want) = (out.extension(), extension(input));
+        if !is_dash(input) && have.map(|e| e.to_ascii_lowercase()) != want.map(|e| e.to_ascii_lowercase()) {
             return Err(Failure::Message(format!(
-                "--out {}: the output of {} is .{want}, since the extension follows the content",
+                "--out {}: the output of {} is .{}, since the extension follows the content",
                 out.display(),
                 input.display(),
+                want.unwrap_or_default().to_string_lossy()
             )));
         }
         return Ok(Output::File(out.to_owned()));
@@ -119,35 +140,50 @@ fn output_for(input: &Path, out: Option<&Path>, several: bool) -> Result<Output,
         Ok(path) => path.file_name().unwrap_or_default().to_owned(),
         // An audited copy keeps its name in another folder.
         Err(_) => {
-            let extension = output_extension(input).unwrap_or_default();
-            input.with_extension(extension).file_name().unwrap_or_default().to_owned()
+            let renamed = input.with_extension(extension(input).unwrap_or_default());
+            renamed.file_name().unwrap_or_default().to_owned()
         }
     };
-    Ok(Output::File(out.join(name)))
+    Ok(Output::File(out.join(inside.as_deref().unwrap_or(Path::new(""))).join(name)))
 }
 
-/// The output of every input; no two may be one.
-pub fn outputs_for(inputs: &[PathBuf], out: Option<&Path>) -> Result<Vec<Output>, Failure> {
+/// The output of every input; no two may be one, and none an input of another.
+pub fn outputs_for(inputs: &[Input], out: Option<&Path>) -> Result<Vec<Output>, Failure> {
+    let several = inputs.len() > 1 || inputs.iter().any(|input| input.inside.is_some());
     let mut outputs: Vec<Output> = Vec::new();
+    let mut taken: BTreeMap<Option<Identity>, usize> = BTreeMap::new();
+    let read: BTreeMap<Identity, usize> =
+        inputs.iter().enumerate().map(|(i, input)| (identity(&input.path), i)).collect();
     for (i, input) in inputs.iter().enumerate() {
-        let output = output_for(input, out, inputs.len() > 1)?;
-        if let Some(j) = outputs.iter().position(|other| same(other, &output)) {
-            return Err(Failure::Message(format!(
-                "{} and {} would both be written to {}\nTry: fill them into different folders",
-                inputs[j].display(),
-                inputs[i].display(),
-                output.shown()
-            )));
+        let output = output_for(input, out, several)?;
+        let place = match &output {
+            Output::File(path) => Some(identity(path)),
+            Output::Stream => None,
+        };
+        let clash = |j: usize, how: &str| {
+            let (one, other) = (inputs[j].path.display(), input.path.display());
+            let hint = "Try: fill them into different folders";
+            Err(Failure::Message(format!("{one} and {other} {how} {}\n{hint}", output.shown())))
+        };
+        if let Some(j) = taken.insert(place.clone(), i) {
+            return clash(j, "would both be written to");
+        }
+        // Of one workbook that is its own output, the workbook's problems tell.
+        if let Some(j) = place.and_then(|place| read.get(&place)).filter(|j| **j != i) {
+            return clash(*j, "are both read, but the second would be written to");
         }
         outputs.push(output);
     }
     Ok(outputs)
 }
 
-fn same(a: &Output, b: &Output) -> bool {
-    match (a, b) {
-        (Output::File(a), Output::File(b)) => a == b || same_file(a, b),
-        (a, b) => a == b,
+/// What a path names. Where letters' case does not tell files apart, neither do two outputs that are not there yet.
+fn identity(path: &Path) -> Identity {
+    match Identity::of(path) {
+        Identity::Path(path) if cfg!(any(windows, target_os = "macos")) => {
+            Identity::Path(path.to_string_lossy().to_lowercase().into())
+        }
+        other => other,
     }
 }
 
@@ -185,7 +221,16 @@ impl Drop for Folder {
 #[cfg(test)]
 mod tests {
     use super::{Output, audited_name, names_a_file, output_for, outputs_for};
+    use crate::input::Input;
     use std::path::{Path, PathBuf};
+
+    fn named(path: &str) -> Input {
+        Input { path: path.into(), inside: None }
+    }
+
+    fn found(path: &str, inside: &str) -> Input {
+        Input { path: path.into(), inside: Some(inside.into()) }
+    }
 
     #[test]
     fn names_follow_the_input() {
@@ -193,21 +238,33 @@ mod tests {
         assert_eq!(audited_name(Path::new("v1.2.xlsm")).unwrap(), Path::new("v1.2.audited.xlsm"));
         assert_eq!(audited_name(Path::new("plan.xltx")).unwrap(), Path::new("plan.audited.xlsx"));
         assert_eq!(audited_name(Path::new("plan.XLTM")).unwrap(), Path::new("plan.audited.xlsm"));
-        assert!(output_for(Path::new("a.xltx"), Some(Path::new("o.xlsx")), false).is_ok());
-        assert!(output_for(Path::new("a.xltx"), Some(Path::new("o.xlsm")), false).is_err());
+        assert!(output_for(&named("a.xltx"), Some(Path::new("o.xlsx")), false).is_ok());
+        assert!(output_for(&named("a.xltx"), Some(Path::new("o.xlsm")), false).is_err());
         assert!(audited_name(Path::new("plan.audited.xlsx")).is_err());
         assert!(names_a_file(Path::new("x.XLSX")) && !names_a_file(Path::new("x.d")));
-        assert!(output_for(Path::new("a.xlsx"), Some(Path::new("o.xlsx")), true).is_err());
-        assert!(output_for(Path::new("a.xlsm"), Some(Path::new("o.xlsx")), false).is_err());
-        let audited = output_for(Path::new("a.audited.xlsx"), Some(Path::new("d")), false).unwrap();
+        assert!(output_for(&named("a.xlsx"), Some(Path::new("o.xlsx")), true).is_err());
+        assert!(output_for(&named("a.xlsm"), Some(Path::new("o.xlsx")), false).is_err());
+        let audited = output_for(&named("a.audited.xlsx"), Some(Path::new("d")), false).unwrap();
         assert_eq!(audited, Output::File(PathBuf::from("d/a.audited.xlsx")));
     }
 
     #[test]
+    fn folders_under_a_walked_one_are_kept() {
+        let inputs = [found("shelf/p.xlsx", ""), found("shelf/dams/p.xlsx", "dams")];
+        let outputs = outputs_for(&inputs, Some(Path::new("o"))).unwrap();
+        let paths = ["o/p.audited.xlsx", "o/dams/p.audited.xlsx"].map(|path| Output::File(path.into()));
+        assert_eq!(outputs, paths);
+        assert!(outputs_for(&inputs[..1], Some(Path::new("o.xlsx"))).is_err(), "a folder is not one file");
+        let beside = outputs_for(&inputs, None).unwrap();
+        assert_eq!(beside[1], Output::File("shelf/dams/p.audited.xlsx".into()));
+    }
+
+    #[test]
     fn two_inputs_never_share_an_output() {
-        let two = |a: &str, b: &str, out| outputs_for(&[a.into(), b.into()], out);
+        let two = |a: &str, b: &str, out| outputs_for(&[named(a), named(b)], out);
         assert!(two("a/p.xlsx", "b/p.xlsx", None).is_ok());
         assert!(two("a/p.xlsx", "b/p.xlsx", Some(Path::new("o"))).is_err());
         assert!(two("p.xlsx", "./p.xlsx", None).is_err());
+        assert!(two("p.xlsx", "o/p.audited.xlsx", Some(Path::new("o"))).is_err(), "an input of another");
     }
 }

@@ -15,6 +15,8 @@ struct State {
     shown: String,
     /// Half a second has passed.
     late: bool,
+    /// Something else is being written.
+    paused: bool,
     ended: bool,
 }
 
@@ -27,7 +29,7 @@ impl State {
     }
 
     fn show(&mut self) {
-        if self.late && !self.ended && self.shown != self.message {
+        if self.late && !self.paused && !self.ended && self.shown != self.message {
             self.erase();
             let _ = write!(std::io::stderr(), "{}", self.message);
             let _ = std::io::stderr().flush();
@@ -71,8 +73,15 @@ impl Progress {
     /// Takes the line away, for something else to be written.
     pub fn pause(&self) {
         let mut state = lock(&self.shared.0);
-        state.message.clear();
+        state.paused = true;
         state.erase();
+    }
+
+    /// Shows it again.
+    pub fn resume(&self) {
+        let mut state = lock(&self.shared.0);
+        state.paused = false;
+        state.show();
     }
 }
 

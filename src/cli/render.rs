@@ -48,7 +48,8 @@ fn word(severity: Severity) -> &'static str {
     }
 }
 
-fn line(file: &str, problem: &Problem, more: &str) -> String {
+/// One problem: file, place, what was found, the code; then what to do.
+pub fn line(file: &str, problem: &Problem, more: &str) -> String {
     let mut line = if problem.place == Place::default() {
         let named = problem.message.starts_with(file);
         let before = if named { String::new() } else { format!("{file}: ") };
@@ -104,29 +105,11 @@ pub fn table(rows: &[Vec<String>]) -> String {
 /// The report on one filled workbook.
 pub fn report(input: &str, output: &str, report: &Report) -> String {
     let mut text = format!("{input} -> {output}\n");
-    for (names, option) in grouped(&report.options) {
-        if names.len() < report.options.len() {
-            text.push_str(&format!("\n{}:\n", names.join(", ")));
-        }
-        text.push_str(&format!("Basis   {}\n        {}\n", option.basis, option.basis_words));
-        text.push_str(&format!("Base    {}\nTiming  {}\n", option.base, option.timing));
-        if let Some(prices) = &option.prices {
-            text.push_str(&format!("Prices  {prices}\n"));
-        }
-    }
-    text.push('\n');
-    let over =
-        report.options.iter().find(|o| o.baseline && report.options.iter().any(|o| o.increment.is_some()));
-    if let Some(baseline) = over {
-        text.push_str(&absolute(report, "As it stands"));
-        text.push('\n');
-        text.push_str(&increments(report, &format!("Over {}", baseline.name)));
-    } else {
-        text.push_str(&absolute(report, "Option"));
-    }
-    text.push('\n');
-    for option in &report.options {
-        text.push_str(&details(option));
+    for own in report.options.chunk_by(|a, b| a.appraisal == b.appraisal) {
+        let appraisal = report.appraisals.iter().find(|a| own[0].appraisal.as_ref() == Some(&a.name));
+        text.extend(appraisal.map(|appraisal| format!("\nAppraisal {}\n\n", appraisal.name)));
+        text.push_str(&options(own));
+        text.extend(appraisal.map(|a| format!("\nVerdict of {}: {}.\n", a.name, a.verdict)));
     }
     text.push_str(&not_valued(&report.not_valued));
     text.push_str(&format!(
@@ -136,6 +119,52 @@ pub fn report(input: &str, output: &str, report: &Report) -> String {
         report.verdict,
         hence_core::CAUTION
     ));
+    escape(&text)
+}
+
+/// The options of one appraisal: on what they are valued, and what each comes to.
+fn options(options: &[OptionReport]) -> String {
+    let mut text = String::new();
+    for (names, option) in grouped(options) {
+        if names.len() < options.len() {
+            text.push_str(&format!("\n{}:\n", names.join(", ")));
+        }
+        text.push_str(&format!("Basis   {}\n        {}\n", option.basis, option.basis_words));
+        text.push_str(&format!("Base    {}\nTiming  {}\n", option.base, option.timing));
+        if let Some(prices) = &option.prices {
+            text.push_str(&format!("Prices  {prices}\n"));
+        }
+    }
+    text.push('\n');
+    let over = options.iter().find(|o| o.baseline && options.iter().any(|o| o.increment.is_some()));
+    if let Some(baseline) = over {
+        text.push_str(&absolute(options, "As it stands"));
+        text.push('\n');
+        text.push_str(&increments(options, &format!("Over {}", baseline.name)));
+    } else {
+        text.push_str(&absolute(options, "Option"));
+    }
+    text.push('\n');
+    for option in options {
+        text.push_str(&details(option));
+    }
+    text
+}
+
+/// The report on one workbook of many: where it went, the verdict, and a line for each option.
+pub fn brief(input: &str, output: &str, report: &Report) -> String {
+    let mut text = format!("{input} -> {output}: {}\n", report.verdict);
+    let row = |option: &OptionReport| {
+        let totals = option.totals();
+        let ratio = totals.ratio.map_or_else(|| "-".into(), |ratio| format!("{ratio:.2}"));
+        let over = if option.increment.is_some() { " over the baseline" } else { "" };
+        vec![
+            format!("  {}", option.name),
+            format!("NPV{over} {}", money(totals.npv)),
+            format!("ratio {ratio}"),
+        ]
+    };
+    text.push_str(&table(&report.options.iter().map(row).collect::<Vec<_>>()));
     escape(&text)
 }
 
@@ -169,22 +198,22 @@ fn grouped(options: &[OptionReport]) -> Vec<(Vec<&str>, &OptionReport)> {
 }
 
 /// The totals of every option as it stands.
-fn absolute(report: &Report, title: &str) -> String {
+fn absolute(options: &[OptionReport], title: &str) -> String {
     let mut rows = vec![headings(title)];
-    rows.extend(report.options.iter().map(|option| totals(&option.name, &option.absolute)));
+    rows.extend(options.iter().map(|option| totals(&option.name, &option.absolute)));
     table(&rows)
 }
 
 /// The totals of every option over the baseline, with its rank by net present value.
-fn increments(report: &Report, title: &str) -> String {
+fn increments(options: &[OptionReport], title: &str) -> String {
     let mut head = headings(title);
     head.push("Rank".to_owned());
     let mut rows = vec![head];
     let npv = |option: &OptionReport| option.totals().npv;
-    for option in &report.options {
+    for option in options {
         let Some(increment) = &option.increment else { continue };
         let mut row = totals(&option.name, increment);
-        row.push((1 + report.options.iter().filter(|other| npv(other) > npv(option)).count()).to_string());
+        row.push((1 + options.iter().filter(|other| npv(other) > npv(option)).count()).to_string());
         rows.push(row);
     }
     table(&rows)

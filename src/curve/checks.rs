@@ -33,11 +33,16 @@ const ELASTICITY: Range =
     Range { name: "elasticity", lower: 0.0, lower_included: true, upper: 20.0, share: false };
 
 impl Range {
+    #[inline]
     fn check(&self, value: f64) -> Result<()> {
-        finite(self.name, value)?;
         let above = if self.lower_included { value >= self.lower } else { value > self.lower };
-        if above && value <= self.upper {
-            return Ok(());
+        if above && value <= self.upper { Ok(()) } else { Err(self.refusal(value)) }
+    }
+
+    #[cold]
+    fn refusal(&self, value: f64) -> Error {
+        if let Err(error) = finite(self.name, value) {
+            return error;
         }
         let show = |number: f64| if self.share { percent(number) } else { number.to_string() };
         let found = if self.share {
@@ -54,9 +59,9 @@ impl Range {
         // A rate typed as a number of percent is the commonest slip.
         if self.share && value > self.upper && value <= 100.0 {
             let meant = value / 100.0;
-            return Err(error.with_hint(format!("{} or {meant}", percent(meant))));
+            return error.with_hint(format!("{} or {meant}", percent(meant)));
         }
-        Err(error)
+        error
     }
 }
 
@@ -67,10 +72,12 @@ pub(crate) fn finite(name: &'static str, value: f64) -> Result<()> {
     Err(Error::new(ErrorKind::NotFinite, name, format!("{name} is {value}, not a finite number")))
 }
 
+#[inline]
 pub(crate) fn rate(value: f64) -> Result<()> {
     RATE.check(value)
 }
 
+#[inline]
 pub(crate) fn growth(value: f64) -> Result<()> {
     GROWTH.check(value)
 }

@@ -6,6 +6,7 @@ mod domain;
 mod edges;
 mod gamma;
 mod horizon;
+mod many;
 mod mixture;
 mod parts;
 mod persistent;
@@ -20,14 +21,19 @@ pub(crate) use checks::{
 };
 pub use domain::Domain;
 pub use parts::Parts;
+pub(crate) use persistent::settled;
 
 use crate::dd::{Dd, exp2, exp2_m1};
 use crate::{Error, ErrorKind, Position, Result, Spec, Timing};
 use gamma::Gamma;
 use horizon::ByFlow;
+use many::Batch;
 use mixture::Mixture;
 use piecewise::{Flat, Piecewise};
 use years::Years;
+
+/// A factor with this logarithm to base 2 is 0, with room for the rounding of an offset: the least double is 2^-1074.
+const VANISHED: f64 = -1100.0;
 
 /// How the logarithm of the factor is computed.
 #[derive(Clone, Debug, PartialEq)]
@@ -58,6 +64,15 @@ impl Form {
         match self {
             Form::Mixture(mixture) => mixture.factor(t),
             _ => exp2(self.log2(t)),
+        }
+    }
+
+    /// An offset from which on the factor is 0; infinite where there is none, or none is known.
+    fn vanishes(&self) -> f64 {
+        match self {
+            Form::Flat(flat) => flat.below(VANISHED),
+            Form::Lines(lines) => lines.below(VANISHED),
+            _ => f64::INFINITY,
         }
     }
 
@@ -201,19 +216,23 @@ impl Curve {
                 format!("{} offsets, but room for {} factors", offsets.len(), factors.len()),
             ));
         }
-        let safe = 0.0..=self.domain.upper.min(domain::FARTHEST);
-        for (index, t) in offsets.iter().enumerate() {
-            if !(self.bounded && safe.contains(t)) {
-                self.factor(*t).map_err(|e| e.with_index(index))?;
+        let batch = self.batch(offsets);
+        if !batch.safe(offsets) {
+            for (index, &t) in offsets.iter().enumerate() {
+                self.factor(t).map_err(|e| e.with_index(index))?;
             }
         }
-        // The kind of curve is settled outside the loops, which are then free of branches.
-        match &self.form {
-            Form::Flat(flat) => fill(offsets, factors, |t| exp2(flat.log2(t))),
-            Form::Lines(lines) => fill(offsets, factors, |t| exp2(lines.log2(t))),
-            form => fill(offsets, factors, |t| form.factor(t)),
+        for (offsets, factors) in offsets.chunks(1024).zip(factors.chunks_mut(1024)) {
+            if batch.factors(offsets, factors).is_none() {
+                batch.compute(offsets, factors);
+            }
         }
         Ok(())
+    }
+
+    /// Makes ready for the factors of these offsets.
+    pub(crate) fn batch(&self, offsets: &[f64]) -> Batch<'_> {
+        Batch::new(self, offsets)
     }
 
     /// The factor of a flow in the year `years` after the base year, under a timing.
@@ -285,6 +304,23 @@ impl Curve {
         finite_rate(t, self.form.instantaneous(t).hi)
     }
 
+    /// Under growth that persists or switches, a whole year after which every year has the same continuous rate to within
+    /// rounding, and that rate; none for other curves, and where the years never settle.
+    pub(crate) fn settled(&self) -> Option<(f64, f64)> {
+        match &self.form {
+            Form::Years(years) => years.settled(),
+            _ => None,
+        }
+    }
+
+    /// The curves that a mixture is made of, with their weights.
+    pub(crate) fn components(&self) -> Option<&[(f64, Curve)]> {
+        match &self.form {
+            Form::Mixture(mixture) => Some(mixture.components()),
+            _ => None,
+        }
+    }
+
     /// What a reader should be told of the curve, a sentence each: factors that jump up at an edge or rise, which
     /// whole-horizon rates by flow and lasting uncertainty of growth can cause. Empty for most curves.
     pub fn warnings(&self) -> Vec<String> {
@@ -335,13 +371,6 @@ impl Curve {
             Form::Mixture(mixture) => mixture.components().iter().all(|(_, curve)| curve.defined(t)),
             _ => true,
         }
-    }
-}
-
-#[inline(always)]
-fn fill(offsets: &[f64], factors: &mut [f64], factor: impl Fn(f64) -> Dd) {
-    for (result, &t) in factors.iter_mut().zip(offsets) {
-        *result = factor(t).hi;
     }
 }
 

@@ -85,6 +85,12 @@ impl Persistent {
         exponent * Dd::LOG2_E
     }
 
+    /// The first year from which the rates of all later years together are within rounding of their limit.
+    pub(super) fn settled(&self) -> f64 {
+        let weight = 1.0 / (1.0 - self.phi);
+        settled(self.phi, self.departure.hi.abs() + 3.0 * self.caution.hi * weight * weight)
+    }
+
     /// The continuous forward rate that the years tend to.
     pub(super) fn last_rate(&self) -> f64 {
         let weight = 1.0 / (1.0 - self.phi);
@@ -96,4 +102,11 @@ impl Persistent {
         let weight = if self.phi > 0.0 { 1.0 / (1.0 - self.phi) } else { 1.0 };
         self.steady.hi - self.departure.hi.abs() - self.caution.hi * weight * weight >= 0.0
     }
+}
+
+/// The first whole year n from which most (|phi|^n + |phi|^(n+1) + ...) is lost in rounding.
+pub(crate) fn settled(phi: f64, most: f64) -> f64 {
+    const LOST: f64 = 1e-16;
+    let (phi, enough) = (phi.abs(), LOST * (1.0 - phi.abs()) / most);
+    if phi == 0.0 || enough >= 1.0 { 1.0 } else { (enough.ln() / phi.ln()).ceil().max(1.0) }
 }

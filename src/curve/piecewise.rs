@@ -1,5 +1,7 @@
 //! Curves whose logarithm is made of straight lines: one line (flat), or several (banded, Ramsey, tables).
 
+use std::ops::RangeInclusive;
+
 use super::edges::Edges;
 use crate::dd::{Dd, log2, two_diff, two_prod};
 
@@ -25,6 +27,11 @@ impl Flat {
         -(self.slope * Dd::LN2)
     }
 
+    /// The offset from which on log2 D is below a level, itself below 0; infinite where it does not fall.
+    pub(super) fn below(&self, level: f64) -> f64 {
+        if self.falls() && self.slope.hi != 0.0 { level / self.slope.hi } else { f64::INFINITY }
+    }
+
     /// Whether the factor never rises.
     pub(super) fn falls(&self) -> bool {
         self.slope.hi <= 0.0
@@ -32,8 +39,8 @@ impl Flat {
 }
 
 /// One line of several: log2 D(t) = value + slope (t - anchor).
-#[derive(Clone, Debug, PartialEq)]
-struct Line {
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) struct Line {
     anchor: f64,
     value: Dd,
     slope: Dd,
@@ -41,7 +48,7 @@ struct Line {
 
 impl Line {
     #[inline(always)]
-    fn log2(&self, t: f64) -> Dd {
+    pub(super) fn log2(&self, t: f64) -> Dd {
         let distance = two_diff(t, self.anchor);
         let product = two_prod(self.slope.hi, distance.hi);
         let rest = product.lo + (self.slope.hi * distance.lo + self.slope.lo * distance.hi);
@@ -93,6 +100,15 @@ impl Piecewise {
         self.lines[self.edges.band(t)].log2(t)
     }
 
+    /// The line on which t lies, and offsets around t that lie on it too.
+    #[inline(always)]
+    pub(super) fn line(&self, t: f64) -> (Line, RangeInclusive<f64>) {
+        let k = self.edges.band(t);
+        let uppers = self.edges.uppers();
+        let from = if k == 0 { f64::NEG_INFINITY } else { uppers[k - 1].next_up() };
+        (self.lines[k], from..=uppers[k])
+    }
+
     /// -D'/D at t, continuous; at an edge that of the band it closes.
     pub(super) fn instantaneous(&self, t: f64) -> Dd {
         -(self.lines[self.edges.band(t)].slope * Dd::LN2)
@@ -101,6 +117,13 @@ impl Piecewise {
     /// -D'/D just after 0.
     pub(super) fn initial(&self) -> Dd {
         -(self.lines[self.edges.band_after_zero()].slope * Dd::LN2)
+    }
+
+    /// An offset on the last line from which on log2 D is below a level; infinite where the last line does not fall.
+    pub(super) fn below(&self, level: f64) -> f64 {
+        let last = &self.lines[self.lines.len() - 1];
+        let distance = (level - last.value.hi) / last.slope.hi;
+        if last.slope.hi < 0.0 { last.anchor + distance.max(0.0) } else { f64::INFINITY }
     }
 
     /// Whether the factor never rises after 0.

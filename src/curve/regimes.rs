@@ -9,6 +9,12 @@ use crate::{Error, ErrorKind, GrowthState, Result};
 /// The most states.
 const MOST_STATES: usize = 10;
 
+/// The most years until the rates have settled.
+const MOST_YEARS: u32 = 50_000;
+
+/// How far apart rates that have settled may be, as a share.
+const SETTLED: f64 = 1e-22;
+
 /// How far the chances of a row may miss a sum of 1.
 const TOLERANCE: f64 = 1e-12;
 
@@ -74,6 +80,37 @@ impl Regimes {
         }
         let sum = row.numbers.iter().fold(Dd::ZERO, |sum, &number| sum + number);
         log2(sum) + Dd::of(row.exponent) - self.rho * Dd::LOG2_E * n as f64
+    }
+
+    /// A year after which every year has one continuous rate, and that rate; none where the years never come so near to
+    /// one, as where states take turns for ever.
+    ///
+    /// D(n+1)/D(n) is a mean over the states of the ratios of (P M)^(n+1) 1 to (P M)^n 1, and in every later year a mean of
+    /// the same ratios with other weights: where they are all alike, the rate is settled for good (after L. Collatz,
+    /// Einschliessungssatz fuer die charakteristischen Zahlen von Matrizen, Mathematische Zeitschrift 48, 1942).
+    pub(super) fn settled(&self) -> Option<(f64, f64)> {
+        let size = self.start.len();
+        let year = &self.doubled[0];
+        let mut weights = vec![Dd::ONE; size];
+        for n in 1..=MOST_YEARS {
+            let next: Vec<Dd> = year
+                .numbers
+                .chunks(size)
+                .map(|row| row.iter().zip(&weights).fold(Dd::ZERO, |sum, (&a, &b)| sum + a * b))
+                .collect();
+            let ratios = || next.iter().zip(&weights).map(|(&next, &before)| next / before);
+            let lowest = ratios().map(|ratio| ratio.hi).fold(f64::INFINITY, f64::min);
+            let first = ratios().next()?;
+            if lowest.is_nan() || lowest <= 0.0 {
+                return None;
+            }
+            if ratios().all(|ratio| ((ratio - first) / first).hi.abs() <= SETTLED) {
+                let rate = self.rho - (log2(first) + Dd::of(year.exponent)) * Dd::LN2;
+                return Some((f64::from(n), rate.hi));
+            }
+            weights = scaled(next, 0.0).numbers;
+        }
+        None
     }
 
     /// Whether no state's factor for a year is above 1.

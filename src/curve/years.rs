@@ -58,6 +58,15 @@ impl Years {
         }
     }
 
+    /// A whole year after which every year has the same continuous rate to within rounding, and that rate; none where the
+    /// years never settle.
+    pub(super) fn settled(&self) -> Option<(f64, f64)> {
+        match self {
+            Years::Persistent(growth) => Some((growth.settled(), growth.last_rate())),
+            Years::Regimes(growth) => growth.settled(),
+        }
+    }
+
     /// The continuous forward rate that far years tend to.
     pub(super) fn last_rate(&self) -> f64 {
         match self {

@@ -2,12 +2,14 @@
 
 use std::collections::BTreeMap;
 
+use multiversion::multiversion;
+
 use super::Perpetual;
 use crate::dd::{Dd, exp2, log2_1p};
 use crate::{Error, ErrorKind, Result, check, sum};
 
 /// So many rates are valued together: as many as the processor's registers hold sums for, two in each.
-pub(super) const ABREAST: usize = 24;
+pub(super) const ABREAST: usize = 48;
 
 /// One number for each rate that is valued together.
 pub(super) type Row = [f64; ABREAST];
@@ -188,8 +190,8 @@ impl Series {
     }
 }
 
-/// The polynomial with these terms, by Horner's rule. A function of its own, so that the sums stay in registers.
-#[inline(never)]
+/// The polynomial with these terms, by Horner's rule.
+#[multiversion(targets = "simd")]
 fn horner(terms: &[f64], v: &Row) -> Row {
     let mut sums = [0.0; ABREAST];
     for &term in terms.iter().rev() {

@@ -9,6 +9,8 @@ mod spread;
 use std::num::NonZeroUsize;
 use std::thread;
 
+use multiversion::multiversion;
+
 use crate::curve::check_rate;
 use crate::dd::{two_prod, two_sum};
 use crate::{Error, ErrorKind, Result, percent};
@@ -181,18 +183,35 @@ impl RateDistribution {
             }
         }
         let parts: [Row; 4] = std::array::from_fn(|i| self.samplers[i].values(&uniform[i]));
-        std::array::from_fn(|i| DrawnRate::of(parts.map(|row| row[i])))
+        let rates = rates(&parts);
+        std::array::from_fn(|i| DrawnRate {
+            parts: [parts[0][i], parts[1][i], parts[2][i], parts[3][i]],
+            rate: rates[i],
+        })
     }
 }
 
 impl DrawnRate {
     #[inline]
     fn of(parts: [f64; 4]) -> Self {
-        let [preference, hazard, elasticity, growth] = parts;
-        // Adding zero turns -0 into 0.
-        let rate = (two_sum(preference, hazard) + two_prod(elasticity, growth)).hi + 0.0;
-        DrawnRate { parts, rate }
+        DrawnRate { parts, rate: rate(parts) }
     }
+}
+
+/// rho + eta g, rounded once.
+#[inline(always)]
+fn rate([preference, hazard, elasticity, growth]: [f64; 4]) -> f64 {
+    // Adding zero turns -0 into 0.
+    (two_sum(preference, hazard) + two_prod(elasticity, growth)).hi + 0.0
+}
+
+#[multiversion(targets = "simd")]
+fn rates(parts: &[Row; 4]) -> Row {
+    let mut rates = [0.0; _];
+    for i in 0..ABREAST {
+        rates[i] = rate([parts[0][i], parts[1][i], parts[2][i], parts[3][i]]);
+    }
+    rates
 }
 
 /// What a draw may be refused for: one of the four quantities, then these. The first that there is, is reported.

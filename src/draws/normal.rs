@@ -1,6 +1,8 @@
 //! The quantiles of the normal distribution, and its distribution function.
 
-use super::flows::Row;
+use multiversion::multiversion;
+
+use super::flows::{ABREAST, Row};
 
 /// Numerators and denominators of the three pieces, from the constant term up.
 #[expect(clippy::excessive_precision, reason = "as published")]
@@ -73,7 +75,7 @@ const FAR: [[f64; 8]; 2] = [
     ],
 ];
 
-#[inline]
+#[inline(always)]
 fn ratio([top, bottom]: &[[f64; 8]; 2], x: f64) -> f64 {
     let polynomial = |c: &[f64; 8]| c.iter().rev().fold(0.0, |sum, c| sum * x + c);
     polynomial(top) / polynomial(bottom)
@@ -93,16 +95,16 @@ pub(super) fn quantile(p: f64) -> f64 {
     if (p - 0.5).abs() <= CENTRAL { central(p) } else { outer(p) }
 }
 
-/// As [`quantile`], of many at once: few lie outside the centre.
-#[inline]
+/// As [`quantile`], of many at once and to the same bits.
+#[multiversion(targets = "simd")]
 pub(super) fn quantiles(p: &Row) -> Row {
-    let mut x = p.map(central);
-    for (x, &p) in x.iter_mut().zip(p) {
-        if (p - 0.5).abs() > CENTRAL {
-            *x = outer(p);
-        }
+    let (mut x, mut far) = ([0.0; _], false);
+    for i in 0..ABREAST {
+        let r = depth(p[i]);
+        x[i] = if (p[i] - 0.5).abs() <= CENTRAL { central(p[i]) } else { tail(p[i], r) };
+        far |= r > NEAR;
     }
-    x
+    if far { p.map(quantile) } else { x }
 }
 
 #[inline(always)]
@@ -112,12 +114,31 @@ fn central(p: f64) -> f64 {
 }
 
 fn outer(p: f64) -> f64 {
-    let r = (-ln(p.min(1.0 - p))).sqrt();
-    let x = if r <= 5.0 { ratio(&TAIL, r - 1.6) } else { ratio(&FAR, r - 5.0) };
+    let r = depth(p);
+    if r <= NEAR { tail(p, r) } else { signed(p, ratio(&FAR, r - 5.0)) }
+}
+
+/// How far a probability is out, sqrt(-ln p) or as much of 1 - p.
+#[inline(always)]
+fn depth(p: f64) -> f64 {
+    (-ln(p.min(1.0 - p))).sqrt()
+}
+
+/// The depth beyond which a third rational function is needed; few draws in a hundred thousand million go there.
+const NEAR: f64 = 5.0;
+
+#[inline(always)]
+fn tail(p: f64, depth: f64) -> f64 {
+    signed(p, ratio(&TAIL, depth - 1.6))
+}
+
+#[inline(always)]
+fn signed(p: f64, x: f64) -> f64 {
     if p < 0.5 { -x } else { x }
 }
 
 /// The natural logarithm of a normal number below 0.1, within two units in the last place.
+#[inline(always)]
 fn ln(p: f64) -> f64 {
     // p = 2^exponent m with m from sqrt(1/2) to sqrt(2), and ln m = 2 atanh((m - 1)/(m + 1)), whose terms fall fast.
     let bits = p.to_bits() + (0x3FF0_0000_0000_0000 - std::f64::consts::FRAC_1_SQRT_2.to_bits());

@@ -1,6 +1,7 @@
 //! What many draws say: percentiles, mean, probabilities with their standard errors, first places, a histogram.
 
-use crate::{Error, ErrorKind, Result, check, sum};
+use crate::sum::Compensated;
+use crate::{Error, ErrorKind, Result, check, dot, sum};
 
 /// A probability as the share of the draws, with its standard error.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -65,8 +66,8 @@ pub struct Spread {
 ///
 /// **Returns**: the [`Spread`]; percentiles in the order asked for.
 ///
-/// **Accuracy**: the mean is that of the exact sum, rounded twice. Values are sorted first, so that their order does not
-/// matter.
+/// **Accuracy**: the mean is that of the exact sum, rounded twice, and the squares of the distances from it are summed
+/// exactly, so that the order of the values does not matter.
 ///
 /// **Errors**: `Shape` without values; `NotFinite`; `RateRange` for a percentile outside 0 to 100, with its index.
 ///
@@ -94,36 +95,82 @@ pub fn spread(values: &[f64], percentiles: &[f64]) -> Result<Spread> {
                 .with_hint("5 for the value that 5% of the draws fall below"));
         }
     }
-    let sorted = sorted(values);
-    let n = sorted.len();
-    let mean = check::result("values", sum(&sorted) / n as f64)?;
-    let squares: f64 = sorted.iter().map(|value| (value - mean) * (value - mean)).sum();
-    let sd = if n == 1 { 0.0 } else { (squares / (n - 1) as f64).sqrt() };
+    let n = values.len();
+    let mean = check::result("values", sum(values) / n as f64)?;
+    let sd = if n == 1 { 0.0 } else { (squares(values, mean) / (n - 1) as f64).sqrt() };
     check::result("values", sd)?;
-    let percentile = |p: &f64| {
+    // Each percentile lies between two places of the sorted values.
+    let place = |p: &f64| {
         let place = (n - 1) as f64 * p / 100.0;
         let k = (place as usize).min(n - 1);
-        let (here, next) = (sorted[k], sorted[(k + 1).min(n - 1)]);
-        here + (place - k as f64) * (next - here)
+        (k, place - k as f64)
+    };
+    let mut places: Vec<usize> = percentiles.iter().map(|p| place(p).0).flat_map(|k| [k, k + 1]).collect();
+    places.retain(|&k| k < n);
+    places.extend([0, n - 1]);
+    places.sort_unstable();
+    places.dedup();
+    let sorted = sorted_at(&places, values);
+    let percentile = |p: &f64| {
+        let (k, over) = place(p);
+        let (here, next) = (sorted.at(k), sorted.at((k + 1).min(n - 1)));
+        here + over * (next - here)
     };
     Ok(Spread {
         mean,
         mean_error: sd / (n as f64).sqrt(),
         sd,
-        lowest: sorted[0],
-        highest: sorted[n - 1],
+        lowest: sorted.at(0),
+        highest: sorted.at(n - 1),
         percentiles: percentiles.iter().map(percentile).collect(),
-        positive: Chance::of(n - sorted.partition_point(|value| *value <= 0.0), n),
+        positive: Chance::of(values.iter().filter(|&&value| value > 0.0).count(), n),
     })
 }
 
-/// The values in their order, -0 before 0. Whole numbers with the same order sort faster.
-fn sorted(values: &[f64]) -> Vec<f64> {
-    // Doubles are ordered as their bits are, negative ones the other way round.
-    let turned = |bits: i64| if bits < 0 { bits ^ i64::MAX } else { bits };
+/// The sum of the squared distances from the mean, exact but for the rounding of each distance and of the result.
+fn squares(values: &[f64], mean: f64) -> f64 {
+    let mut sum = Compensated::new();
+    let mut block = [0.0; 256];
+    for values in values.chunks(block.len()) {
+        let distances = &mut block[..values.len()];
+        for (distance, value) in distances.iter_mut().zip(values) {
+            *distance = value - mean;
+        }
+        sum.add_products(distances, distances);
+    }
+    sum.total().unwrap_or_else(|| {
+        let distances: Vec<f64> = values.iter().map(|value| value - mean).collect();
+        dot(&distances, &distances)
+    })
+}
+
+/// Values of which some stand where sorting would put them.
+struct Sorted(Vec<i64>);
+
+impl Sorted {
+    fn at(&self, place: usize) -> f64 {
+        f64::from_bits(turned(self.0[place]) as u64)
+    }
+}
+
+/// Doubles are ordered as their bits are, negative ones the other way round; -0 comes before 0. Turning back is the same.
+fn turned(bits: i64) -> i64 {
+    if bits < 0 { bits ^ i64::MAX } else { bits }
+}
+
+/// Puts the values of these places, which rise, where sorting would; the others in between, in any order.
+fn sorted_at(places: &[usize], values: &[f64]) -> Sorted {
+    fn part(keys: &mut [i64], from: usize, places: &[usize]) {
+        // From the middle outwards, so that each selection is among as few as may be.
+        let Some(&middle) = places.get(places.len() / 2) else { return };
+        let (before, after) = places.split_at(places.len() / 2);
+        let (lower, _, upper) = keys.select_nth_unstable(middle - from);
+        part(lower, from, before);
+        part(upper, middle + 1, &after[1..]);
+    }
     let mut keys: Vec<i64> = values.iter().map(|value| turned(value.to_bits() as i64)).collect();
-    keys.sort_unstable();
-    keys.into_iter().map(|key| f64::from_bits(turned(key) as u64)).collect()
+    part(&mut keys, 0, places);
+    Sorted(keys)
 }
 
 /// How probable it is that an option ranks first.

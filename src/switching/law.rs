@@ -1,6 +1,7 @@
 //! How the logarithm of a curve's factors depends on one parameter: a sum of simple parts, each times a number of years.
 
 use super::Parameter;
+use crate::curve::settled;
 use crate::dd::{Dd, log2_1p, two_prod};
 use crate::{Compounding, Curve, Error, ErrorKind, Parts, Persistence, Result, Spec, Where};
 
@@ -85,6 +86,13 @@ impl Law {
         };
         let edge = |edges: &[f64]| edges.last().copied().unwrap_or(f64::NEG_INFINITY);
         let open = self.curve.as_ref().is_none_or(|curve| curve.domain().upper == f64::INFINITY);
+        // The sums grow by as much every year in the end, within rounding at any elasticity that is searched.
+        let persistent = |Persistence { phi, start }: Persistence, sd: f64| {
+            let most = Parameter::Elasticity.interval().1;
+            let variance = (sd / (1.0 - phi)).powi(2);
+            let edge = settled(phi, most * start.abs() + 1.5 * most * most * variance);
+            Some((edge, vec![1.0, 0.0, variance]))
+        };
         match &self.years {
             _ if !open => None,
             Years::All => Some((f64::NEG_INFINITY, vec![1.0])),
@@ -93,7 +101,8 @@ impl Law {
                 let weights = [vec![1.0], last_only(self.parts.len() - 1)].concat();
                 Some((edge(edges), weights))
             }
-            Years::Persistent { .. } | Years::Curve(_) => None,
+            Years::Persistent { persistence, sd } => persistent(*persistence, *sd),
+            Years::Curve(curve) => curve.settled().map(|(edge, rate)| (edge, vec![1.0, rate])),
         }
     }
 
@@ -105,19 +114,24 @@ impl Law {
 
     /// The part of an interval where the last rate, in continuous compounding, exceeds another.
     pub fn clip_lasting(&self, lasting: &[f64], rate: f64, interval: (f64, f64)) -> Option<(f64, f64)> {
-        let mut target = rate;
-        let mut moving = None;
+        // Parts that are no logarithm add up to one polynomial.
+        let (mut plain, mut moving) = ([-rate, 0.0, 0.0], None);
         for (part, &weight) in self.parts.iter().zip(lasting).filter(|(_, weight)| **weight != 0.0) {
-            if part.moves() {
-                moving = Some((part, weight));
-            } else {
-                target -= weight * part.value(interval.0);
+            match (part.log, part.moves()) {
+                (true, true) => moving = Some((part, weight * part.scale)),
+                (true, false) => plain[0] += weight * part.value(interval.0),
+                (false, _) => {
+                    for (sum, coefficient) in plain.iter_mut().zip(part.p) {
+                        *sum += weight * part.scale * coefficient;
+                    }
+                }
             }
         }
-        let Some((part, weight)) = moving else { return (target < 0.0).then_some(interval) };
-        let target = target / (weight * part.scale);
-        let bound = if part.log { target.exp_m1() } else { target };
-        let (low, high) = at_least(part.p, bound, interval)?;
+        let (low, high) = match moving {
+            Some((part, weight)) => at_least(part.p, (-plain[0] / weight).exp_m1(), interval)?,
+            None if plain[1] == 0.0 && plain[2] == 0.0 => return (plain[0] > 0.0).then_some(interval),
+            None => at_least(plain, 0.0, interval)?,
+        };
         // A little inside, as a value without end lies on the bound.
         let inside =
             |clipped: f64, asked: f64, step: f64| if clipped == asked { asked } else { clipped + step };
@@ -201,10 +215,11 @@ fn parts_of(spec: &Spec, curve: &Curve, parameter: Parameter) -> Result<(Vec<Par
             let parts = vec![plain(-preference, 1.0, 0.0), plain(1.0, 0.0, 0.0)];
             Ok((parts, Years::Curve(Box::new(curve.clone()))))
         }
-        Spec::GrowthRegimes { .. } => {
-            let message = format!("the {parameter} of growth in states is not searched in this version");
-            Err(Error::new(ErrorKind::Unsupported, "parameter", message)
-                .with_hint("its preference, or the flat rate"))
+        // Means that move together by d turn every D(n) into D(n) exp(-eta d n).
+        Spec::GrowthRegimes { elasticity, states, .. } if parameter == Parameter::Growth => {
+            let first = states.first().map_or(0.0, |state| state.mean);
+            let parts = vec![plain(-elasticity * first, *elasticity, 0.0), plain(1.0, 0.0, 0.0)];
+            Ok((parts, Years::Curve(Box::new(curve.clone()))))
         }
         _ => {
             let message = format!("the basis is not stated by {parameter}");
@@ -227,11 +242,16 @@ fn in_bands(edges: &[f64], bands: usize, t: f64) -> Vec<f64> {
         .collect()
 }
 
+/// An offset too far for growth that is followed year by year.
+pub(super) fn out_of_reach(t: f64, most: f64) -> Error {
+    let message = format!("offset {t} is too far for growth that persists or switches, allowed up to {most}");
+    Error::new(ErrorKind::Unsupported, "offsets", message).with_hint("a nearer last flow")
+}
+
 /// The sums y_0 phi w_n and s^2 (w_1^2 + ... + w_n^2), w_n = 1 + phi + ... + phi^(n-1), linear within a year.
 fn persistent(Persistence { phi, start }: Persistence, sd: f64, t: f64) -> Result<(f64, f64)> {
     if t > MOST_YEARS {
-        let message = format!("offset {t} is too far for growth that persists, allowed up to {MOST_YEARS}");
-        return Err(Error::new(ErrorKind::Unsupported, "offsets", message).with_hint("a nearer last flow"));
+        return Err(out_of_reach(t, MOST_YEARS));
     }
     let (mut weight, mut departure, mut variance) = (0.0, 0.0, 0.0);
     let mut years = 0.0;

@@ -3,6 +3,8 @@
 mod exponents;
 mod flows;
 mod law;
+mod series;
+mod states;
 
 use std::fmt;
 
@@ -11,6 +13,8 @@ use crate::{Error, ErrorKind, OptionFlows, Result, Spec, Where, check, internal_
 use exponents::Exponents;
 use flows::Row;
 use law::{Law, Part};
+use series::Sum;
+use states::States;
 
 /// A parameter of the basis.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -170,8 +174,8 @@ pub struct Switching {
 ///
 /// **Errors**: those of [`Spec::curve`]; `Shape`, `NotFinite`; `RateRange` for an interval that is empty; `NoMeaning`
 /// where every flow is 0, as every value would do; `OutsideDomain` for an offset where the curve is not defined;
-/// `Unsupported` where the spec is not stated by the parameter, for elasticity and growth of growth in states, and for
-/// flows without end under growth that persists or has states; `Diverges` where flows without end have no value anywhere
+/// `Unsupported` where the spec is not stated by the parameter, and for flows without end where growth switches between
+/// states: for its elasticity, and where the yearly rates never settle; `Diverges` where flows without end have no value anywhere
 /// in the interval.
 ///
 /// **Source**: as for [`internal_rates`]; power series of composed functions with majorants: R. E. Moore, Interval
@@ -207,6 +211,15 @@ pub fn switching_values(
         let message = format!("found {} to {}, allowed: a rising pair", interval.0, interval.1);
         return Err(Error::new(ErrorKind::RateRange, "interval", message).with_hint("-0.5 to 1"));
     }
+    if let (Parameter::Elasticity, Some(states)) = (parameter, States::of(spec)) {
+        let mut found =
+            Switching { values: Vec::new(), unresolved: Vec::new(), interval, moves: states.moves() };
+        let (flows, factors) = states.over(&spec.curve(at)?, net)?;
+        if let (true, Some(sum)) = (found.moves, Sum::new(flows, factors)?) {
+            (found.values, found.unresolved) = crossings(&sum, interval);
+        }
+        return Ok(found);
+    }
     let law = Law::of(spec, at, parameter)?;
     let terms = net.terms(&law)?;
     let Some(interval) = terms.clip(&law, interval) else {
@@ -221,7 +234,8 @@ pub fn switching_values(
     match law.parts.as_slice() {
         [part] if part.log && part.scale == 1.0 => by_rate(&terms.rows, part, &mut found)?,
         _ => {
-            let Some(sum) = Exponents::new(&law, terms.rows)? else { return Ok(found) };
+            let (flows, factors) = Exponents::of(&law.parts, terms.rows);
+            let Some(sum) = Sum::new(flows, factors)? else { return Ok(found) };
             (found.values, found.unresolved) = crossings(&sum, interval);
         }
     }

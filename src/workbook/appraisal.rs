@@ -3,6 +3,7 @@
 use chrono::NaiveDate;
 use hence_core::{PriceBasis, Timing};
 
+use crate::decide::Rule;
 use crate::problem::Problem;
 use crate::references::{Area, SheetRange};
 
@@ -341,6 +342,8 @@ pub struct Appraisal {
     pub choices: Vec<Choice>,
     /// Which of them is the baseline.
     pub baseline: Option<usize>,
+    /// What ranks the options.
+    pub decide: Rule,
     /// Every cell that was read for a setting, by sheet and place.
     pub settings: Vec<Setting>,
     /// Every numeric row along the years, valued or not.

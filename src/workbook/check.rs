@@ -1,22 +1,21 @@
-//! What a workbook holds in its targets against what its declared basis gives.
+//! What a workbook holds in its targets against what its declared basis gives, and what kind of mistake that shows.
 
 use hence_core::Catalogue;
 
-use crate::appraisal::{Held, Target};
-use crate::formulas::expected;
-use crate::layout::Layout;
+use crate::appraisal::Held;
+use crate::diagnose::{self, Compared, Seen, Standing};
+use crate::findings::Finding;
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::patch::Cached;
-use crate::plan::{same_text, span, words};
+use crate::plan::{span, words};
+use crate::planfile::PlanFile;
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, Severity};
 use crate::references::SheetRange;
 use crate::report::Status;
-use crate::resolve::{Options, resolve};
-use crate::sheets::{SheetNames, role_words};
-use crate::tolerance;
-use crate::valuation::{cell_of, value};
+use crate::resolve::Options;
+use crate::sheets::role_words;
 
 /// One cell that does not hold what the basis gives.
 #[derive(Clone, Debug, PartialEq)]
@@ -40,6 +39,8 @@ pub struct CheckReport {
     pub agree: usize,
     /// Every cell that does not.
     pub differences: Vec<Difference>,
+    /// The mistakes behind them, and others; what follows from one is not listed again.
+    pub findings: Vec<Finding>,
     /// Blank targets.
     pub not_filled: Vec<Place>,
     /// Warnings, and cells that could not be compared.
@@ -47,9 +48,9 @@ pub struct CheckReport {
 }
 
 impl CheckReport {
-    /// Whether all filled cells agree.
+    /// Whether nothing is wrong.
     pub fn agrees(&self) -> bool {
-        self.differences.is_empty() && self.problems.iter().all(|p| p.severity != Severity::Error)
+        self.findings.is_empty() && self.problems.iter().all(|p| p.severity != Severity::Error)
     }
 
     /// For the report.
@@ -58,89 +59,121 @@ impl CheckReport {
     }
 }
 
+/// What the run is told besides the workbook.
+#[derive(Clone, Debug, Default)]
+pub struct CheckRequest {
+    /// Roles for cells without a defined name: role, range.
+    pub roles: Vec<(String, String)>,
+    /// What is where, for a workbook without names; every appraisal of it is checked.
+    pub plan: Option<PlanFile>,
+}
+
 /// Checks one workbook; nothing is written.
 ///
+/// Years and signs that keep it from being valued are findings, and are set right in memory so that the rest is checked, too.
+///
 /// # Errors
-/// Everything that keeps the workbook from being read and valued, each with its cell.
-pub fn check(package: &Package, roles: &[(String, String)], catalogue: &Catalogue) -> Result<CheckReport> {
-    let mut problems = preflight(package)?;
+/// Everything else that keeps the workbook from being read and valued, each with its cell.
+pub fn check(package: &Package, request: &CheckRequest, catalogue: &Catalogue) -> Result<CheckReport> {
+    let problems = preflight(package)?;
     let book = Workbook::read(package)?;
-    let mut appraisal = resolve(package, &book, &Options { roles, basis: None })?;
-    problems.append(&mut appraisal.problems);
-    let (outcomes, found) = value(&appraisal, catalogue)?;
-    problems.extend(found);
-    let layout = Layout::new(&appraisal, &outcomes, &SheetNames::choose(&[]));
-    let mut report = CheckReport { agree: 0, differences: Vec::new(), not_filled: Vec::new(), problems };
-    for (c, choice) in appraisal.choices.iter().enumerate() {
-        for target in &choice.targets {
-            let results = expected(&appraisal, &outcomes, &layout, c, target);
-            report.target(target, &results);
+    let mut checked = CheckReport {
+        agree: 0,
+        differences: Vec::new(),
+        findings: Vec::new(),
+        not_filled: Vec::new(),
+        problems,
+    };
+    let parts = match &request.plan {
+        Some(plan) => plan.parts(&book)?.into_iter().map(Some).collect(),
+        None => vec![None],
+    };
+    for part in parts {
+        let options = Options { roles: &request.roles, plan: part.as_ref(), ..Options::default() };
+        check_appraisal(package, &book, &options, catalogue, &mut checked)?;
+    }
+    Ok(checked)
+}
+
+/// Checks one appraisal of a workbook.
+fn check_appraisal(
+    package: &Package,
+    book: &Workbook,
+    options: &Options,
+    catalogue: &Catalogue,
+    checked: &mut CheckReport,
+) -> Result<()> {
+    let error = match Seen::look(package, book, options, catalogue) {
+        Ok(seen) => {
+            checked.findings.extend(diagnose::findings(&seen, Vec::new(), |_| false)?);
+            report(&seen, checked);
+            return Ok(());
+        }
+        Err(error) => error,
+    };
+    if let Some(mended) = diagnose::mend(package, book, options.roles, error.problems())? {
+        let book = Workbook::read(&mended.package)?;
+        if let Ok(seen) = Seen::look(&mended.package, &book, options, catalogue) {
+            let found = mended.findings(&seen);
+            checked.findings.extend(diagnose::findings(&seen, found, |finding| mended.repeats(finding))?);
+            report(&seen, checked);
+            return Ok(());
         }
     }
-    Ok(report)
+    let findings = diagnose::unvalued(error.problems());
+    if findings.is_empty() {
+        return Err(error);
+    }
+    checked.findings.extend(findings);
+    checked.problems.extend(error.problems().iter().cloned());
+    Ok(())
 }
 
-fn number(result: &Cached) -> Option<f64> {
-    if let Cached::Number(x) = result { Some(*x) } else { None }
-}
-
-impl CheckReport {
-    fn target(&mut self, target: &Target, results: &[Cached]) {
-        let mut blank = Vec::new();
-        let mut waiting = Vec::new();
-        for (i, (held, result)) in target.held.iter().zip(results).enumerate() {
-            let at = cell_of(&target.at, i);
-            match (held, result) {
-                (Held::Blank, _) => blank.push(at),
-                (Held::Formula { value: None, shown: None, .. }, _) => waiting.push(at),
-                (Held::Number(found) | Held::Formula { value: Some(found), .. }, Cached::Number(x)) => {
-                    if (found - x).abs() <= tolerance::of_cell(target, i, *x) {
-                        self.agree += 1;
-                    } else {
-                        self.differ(target, &at, found.to_string(), Some(*x), Some(found - x));
-                    }
-                }
-                (Held::Text(found) | Held::Formula { shown: Some(found), .. }, Cached::Text(text))
-                    if same_text(found, text) =>
-                {
-                    self.agree += 1;
-                }
-                (Held::Formula { shown: Some(found), .. }, result) => {
-                    self.differ(target, &at, found.clone(), number(result), None);
-                }
-                (held, result) => self.differ(target, &at, words(held), number(result), None),
-            }
+/// The comparison cell by cell. What was said of the workbook for another appraisal of it is not said again.
+fn report(seen: &Seen, report: &mut CheckReport) {
+    for problem in &seen.problems {
+        if !report.problems.contains(problem) {
+            report.problems.push(problem.clone());
         }
-        if let Some(place) = span(&blank) {
-            self.not_filled.push(place.called(&target.from));
+    }
+    for cells in seen.compared.chunk_by(|a, b| (a.choice, a.target) == (b.choice, b.target)) {
+        let cells_that = |standing: Standing| -> Vec<SheetRange> {
+            cells.iter().filter(|cell| cell.standing == standing).map(|cell| cell.at.clone()).collect()
+        };
+        report.agree += cells_that(Standing::Agrees).len();
+        let differ = cells.iter().filter(|cell| cell.standing == Standing::Differs);
+        report.differences.extend(differ.map(|cell| difference(seen, cell)));
+        let target = seen.target(&cells[0]);
+        if let Some(place) = span(&cells_that(Standing::Blank)) {
+            report.not_filled.push(place.called(&target.from));
         }
+        let waiting = cells_that(Standing::Awaits);
         if let Some(place) = span(&waiting) {
             let message = format!(
                 "{} of {} formulas have no result in the file, so nothing was compared",
                 waiting.len(),
                 target.held.len()
             );
-            self.problems.push(
+            report.problems.push(
                 Problem::warning("awaits-recalculation", place.called(&target.from), message)
                     .hint("open and save the workbook in a spreadsheet program first"),
             );
         }
     }
+}
 
-    fn differ(
-        &mut self,
-        target: &Target,
-        at: &SheetRange,
-        found: String,
-        expected: Option<f64>,
-        difference: Option<f64>,
-    ) {
-        self.differences.push(Difference {
-            place: Place::cells(&at.sheet, at.range).called(&target.from),
-            role: role_words(&target.role),
-            found,
-            expected,
-            difference,
-        });
+fn difference(seen: &Seen, cell: &Compared) -> Difference {
+    let (target, held) = (seen.target(cell), seen.held(cell));
+    let expected = if let Cached::Number(x) = cell.expected { Some(x) } else { None };
+    let found = match held {
+        Held::Formula { shown: Some(shown), .. } => shown.clone(),
+        held => held.number().map_or_else(|| words(held), |x| x.to_string()),
+    };
+    Difference {
+        place: Place::cells(&cell.at.sheet, cell.at.range).called(&target.from),
+        role: role_words(&target.role),
+        found,
+        expected,
+        difference: held.number().zip(expected).map(|(found, expected)| found - expected),
     }
 }

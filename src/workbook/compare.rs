@@ -1,28 +1,32 @@
 //! Options side by side under several bases, and where the decision switches.
 
+mod changes;
 mod map;
 mod picture;
 mod search;
 mod tables;
 
-use hence_core::{Basis, Catalogue, Parameter};
+use hence_core::{Basis, Catalogue, Parameter, Spec};
 
 use crate::appraisal::{Appraisal, COMMAND_LINE, Given};
 use crate::model::Workbook;
 use crate::outcome::{ChoiceOutcome, Totals};
 use crate::package::Package;
+use crate::planfile::PlanFile;
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, WorkbookError};
+use crate::ranking::{Worth, best, over, ranks};
 use crate::report::Status;
 use crate::resolve::{Options, resolve};
 use crate::valuation::{from_core, value};
 
 pub use tables::{book, change_words, heading, map_words, remark, shown, words};
 
+pub use changes::Change;
 pub use map::{Map, ZeroRow, option_letter};
 pub use picture::picture;
-pub use search::{Change, Entry, MULTIPLIERS, Moved};
-use search::{npv_at, ramsey_basis, search};
+pub use search::{Entry, MULTIPLIERS, Moved};
+use search::{ramsey_basis, search, worths_at};
 
 /// What takes part in a comparison, besides what the workbook declares.
 #[derive(Clone, Debug, Default)]
@@ -31,6 +35,8 @@ pub struct CompareRequest {
     pub against: Vec<String>,
     /// Roles for cells without a defined name: role, range.
     pub roles: Vec<(String, String)>,
+    /// What is where, for a workbook without names.
+    pub plan: Option<PlanFile>,
     /// Make a map over preference and this part of the rate: elasticity or growth.
     pub map: Option<Parameter>,
 }
@@ -64,7 +70,9 @@ pub struct Standing {
     pub basis: String,
     /// Totals, over the baseline where there is one.
     pub totals: Totals,
-    /// 1 for the highest net present value; equal ones share a rank.
+    /// The net present value, and how far rounding may have moved it.
+    pub worth: Worth,
+    /// 1 for the highest net present value; those that differ by rounding alone share a rank.
     pub rank: usize,
 }
 
@@ -94,6 +102,8 @@ pub struct Comparison {
     pub sides: Vec<Side>,
     /// The basis whose preference, elasticity and growth were searched, where any is stated by them.
     pub ramsey: Option<String>,
+    /// Its spec, where it dates the flows as the declared basis does.
+    pub ramsey_spec: Option<Spec>,
     /// Switching values: an entry for every option, what it is held against and every parameter.
     pub switching: Vec<Entry>,
     /// Where the best option changes, as one parameter moves.
@@ -127,7 +137,12 @@ struct Valued {
 pub fn compare(package: &Package, request: &CompareRequest, catalogue: &Catalogue) -> Result<Comparison> {
     let mut problems = preflight(package)?;
     let book = Workbook::read(package)?;
-    let mut appraisal = resolve(package, &book, &Options { roles: &request.roles, basis: None })?;
+    let plan = PlanFile::part_of(request.plan.as_ref(), &book)?;
+    let mut appraisal = resolve(
+        package,
+        &book,
+        &Options { roles: &request.roles, plan: plan.as_ref(), ..Options::default() },
+    )?;
     problems.append(&mut appraisal.problems);
     let (outcomes, found) = value(&appraisal, catalogue)?;
     problems.extend(found);
@@ -144,7 +159,7 @@ pub struct Sensitivity {
     pub comparison: Comparison,
     /// Points added to every rate of the declared basis, and what every option then comes to; none where the basis is not
     /// made of rates, or they would leave their range.
-    pub shifted: Vec<(f64, Option<Vec<f64>>)>,
+    pub shifted: Vec<(f64, Option<Vec<Worth>>)>,
 }
 
 /// What every rate is moved by for the sensitivity table.
@@ -164,11 +179,7 @@ pub fn sensitivity(
     // What the companion cannot do has been said where it is reported.
     let mut problems = Vec::new();
     let valued = value_all(declared, against, catalogue, &mut problems)?;
-    let moved = |by: f64| {
-        let npv = npv_at(&valued[0], &|spec| spec.shifted(by))?;
-        let base = appraisal.baseline.map_or(0.0, |baseline| npv[baseline]);
-        Some(npv.into_iter().map(|npv| npv - base).collect())
-    };
+    let moved = |by: f64| Some(over(worths_at(&valued[0], &|spec| spec.shifted(by))?, appraisal.baseline));
     let shifted = SHIFTS.map(|by| (by, moved(by))).to_vec();
     problems.retain(|problem| problem.code != "companion");
     Ok(Sensitivity { comparison: comparison(&valued, problems), shifted })
@@ -188,11 +199,19 @@ fn comparison(valued: &[Valued], problems: Vec<Problem>) -> Comparison {
         baseline: declared.appraisal.baseline,
         sides: valued.iter().map(side).collect(),
         ramsey: ramsey.map(|valued| valued.outcomes[0].basis.canonical()),
+        ramsey_spec: ramsey
+            .filter(|valued| dated_alike(valued, declared))
+            .map(|valued| valued.outcomes[0].basis.spec().clone()),
         switching,
         changes,
         map: None,
         problems,
     }
+}
+
+/// Whether the flows of two stand at the same offsets.
+fn dated_alike(a: &Valued, b: &Valued) -> bool {
+    a.outcomes.iter().zip(&b.outcomes).all(|(a, b)| a.dated.offsets == b.dated.offsets)
 }
 
 /// The workbook on its declared basis, on the companion of that, and on every basis asked for; each once.
@@ -282,18 +301,14 @@ fn beside(declared: &Valued, catalogue: &Catalogue) -> Result<Option<Valued>> {
 }
 
 fn side(valued: &Valued) -> Side {
-    let npv: Vec<f64> = valued.outcomes.iter().map(|outcome| outcome.totals().npv).collect();
-    let rank = |own: f64| 1 + npv.iter().filter(|other| **other > own).count();
-    let standings: Vec<Standing> = valued
-        .outcomes
-        .iter()
-        .map(|outcome| Standing {
-            basis: outcome.basis.canonical(),
-            totals: *outcome.totals(),
-            rank: rank(outcome.totals().npv),
-        })
-        .collect();
-    let first: Vec<usize> = (0..npv.len()).filter(|&i| standings[i].rank == 1).collect();
+    let worths = Worth::of_outcomes(&valued.outcomes, valued.appraisal.baseline);
+    let ranked = valued.outcomes.iter().zip(&worths).zip(ranks(&worths));
+    let standing = |((outcome, worth), rank): ((&ChoiceOutcome, &Worth), usize)| Standing {
+        basis: outcome.basis.canonical(),
+        totals: *outcome.totals(),
+        worth: *worth,
+        rank,
+    };
     let distinct = |text: &dyn Fn(&ChoiceOutcome) -> String| {
         let mut texts: Vec<String> = Vec::new();
         for outcome in &valued.outcomes {
@@ -308,7 +323,7 @@ fn side(valued: &Valued) -> Side {
         why: valued.why,
         basis: distinct(&|outcome| outcome.basis.canonical()),
         words: distinct(&|outcome| outcome.basis.words()),
-        standings,
-        best: if first.len() == 1 { first.first().copied() } else { None },
+        standings: ranked.map(standing).collect(),
+        best: best(&worths),
     }
 }

@@ -11,6 +11,7 @@ use crate::dated::Flows;
 use crate::model::Workbook;
 use crate::outcome::ChoiceOutcome;
 use crate::package::Package;
+use crate::planfile::PlanFile;
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result};
 use crate::resolve::{Options, resolve};
@@ -23,6 +24,8 @@ pub struct DrawsRequest {
     pub distributions: [Option<Distribution>; 4],
     /// Roles for cells without a defined name: role, range.
     pub roles: Vec<(String, String)>,
+    /// What is where, for a workbook without names.
+    pub plan: Option<PlanFile>,
 }
 
 /// Where a part of the rate comes from.
@@ -138,7 +141,9 @@ pub fn prepare(package: &Package, request: &DrawsRequest, catalogue: &Catalogue)
 /// medians stand in for one.
 fn read(package: &Package, book: &Workbook, request: &DrawsRequest) -> Result<(Appraisal, bool)> {
     let roles = &request.roles;
-    let error = match resolve(package, book, &Options { roles, basis: None }) {
+    let plan = PlanFile::part_of(request.plan.as_ref(), book)?;
+    let plan = plan.as_ref();
+    let error = match resolve(package, book, &Options { roles, plan, ..Options::default() }) {
         Ok(appraisal) => return Ok((appraisal, true)),
         Err(error) => error,
     };
@@ -151,7 +156,8 @@ fn read(package: &Package, book: &Workbook, request: &DrawsRequest) -> Result<(A
     if let [Some(preference), Some(elasticity), Some(growth)] = stated {
         let line = [preference, elasticity, growth].join(", ");
         // A basis that is there and cannot be read has to be mended.
-        if let Ok(appraisal) = resolve(package, book, &Options { roles, basis: Some(&line) })
+        if let Ok(appraisal) =
+            resolve(package, book, &Options { roles, basis: Some(&line), plan, ..Options::default() })
             && appraisal.problems.iter().all(|problem| problem.code != "basis-overridden")
         {
             return Ok((appraisal, false));

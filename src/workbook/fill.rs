@@ -1,49 +1,59 @@
 //! The main job: an analyst's workbook in, its targets filled, an audited workbook out.
 
+mod basis;
+mod bridge;
+mod work;
+
 use std::collections::{BTreeMap, BTreeSet};
 use std::path::Path;
 
-use hence_core::{Basis, Catalogue, Compounding, Spec};
-use sha2::{Digest, Sha256};
+use hence_core::Catalogue;
+use serde::{Deserialize, Serialize};
 
-use crate::appraisal::{Appraisal, Covered, Given, Setting, Stated};
-use crate::companions::companions;
-use crate::compare::sensitivity;
+use crate::appraisal::{Appraisal, Covered};
 use crate::follow;
 use crate::graft::{Graft, graft};
-use crate::layout::Layout;
 use crate::model::Workbook;
-use crate::outcome::ChoiceOutcome;
-use crate::own::{self, OwnSheet};
+use crate::own;
 use crate::package::{Changes, Package, may_write, same_file, write_atomically};
-use crate::patch::{CellWrite, patch_sheet};
-use crate::plan::{Plan, Stale, Ways, plan_targets};
+use crate::patch::{Cached, CellWrite, patch_sheet};
+use crate::plan::Stale;
+use crate::planfile::{Part, PlanFile};
 use crate::preflight::preflight;
 use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
-use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::{Cell, SheetRange};
-use crate::report::{Report, option_reports};
-use crate::resolve::{Options, resolve};
-use crate::sheets::{AuditInput, Meta, SheetNames, VERDICT_AGREES, build};
+use crate::report::Report;
+use crate::settle;
+use crate::sheets::{self, Composed, Meta, VERDICT_AGREES};
+use crate::shelf::{Record, output_is_input, prepare, record_part, sealed};
 use crate::stale;
-use crate::valuation::{from_core, value};
 use crate::verify::{Expected, verify};
 
+use work::{Run, Work};
+
 /// What the run is told besides the workbook.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
 pub struct FillRequest {
     /// Value on this basis, and write it into the basis cell.
     pub basis: Option<String>,
+    /// Value at this base, and write it into the base cell.
+    pub base: Option<String>,
+    /// Value in these prices (`real 2026`), and write them into the price basis cell.
+    pub prices: Option<String>,
     /// Change the basis from the first to the second; another basis is refused.
     pub replace: Option<(String, String)>,
     /// Roles for cells without a defined name: role, range.
     pub roles: Vec<(String, String)>,
+    /// What is where, for a workbook without names.
+    pub plan: Option<PlanFile>,
     /// Targets get live formulas; else plain numbers.
     pub formulas: bool,
     /// Formulas found in targets are replaced, not compared.
     pub replace_formulas: bool,
     /// Rate lines or ids of schedules to value it on besides, for the sensitivity sheet.
     pub against: Vec<String>,
+    /// LibreOffice computes what has no result, so that every formula of the output has one.
+    pub settle: bool,
     /// For the audit summary.
     pub as_of: Option<String>,
     /// For the audit summary.
@@ -54,11 +64,15 @@ impl Default for FillRequest {
     fn default() -> Self {
         FillRequest {
             basis: None,
+            base: None,
+            prices: None,
             replace: None,
             roles: Vec::new(),
+            plan: None,
             formulas: true,
             replace_formulas: false,
             against: Vec::new(),
+            settle: false,
             as_of: None,
             by: None,
         }
@@ -72,6 +86,8 @@ pub struct Filled {
     pub bytes: Vec<u8>,
     /// What was found and done.
     pub report: Report,
+    /// From what it was made: hashes and version.
+    pub meta: Meta,
 }
 
 /// Fills one workbook file. The output appears whole under its name, or not at all; the input is never written.
@@ -88,10 +104,7 @@ pub fn fill_file(
 ) -> Result<Report> {
     let package = Package::open(input)?;
     if same_file(input, output) {
-        let message = format!("the output {} is the input, which is never written", output.display());
-        return Err(Problem::error("output-is-input", Place::default(), message)
-            .hint("give --out another name")
-            .into());
+        return Err(output_is_input(output));
     }
     may_write(output, force)?;
     let filled = fill(&package, request, catalogue)?;
@@ -104,93 +117,51 @@ pub fn fill_file(
 /// # Errors
 /// As [`fill_file`].
 pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> Result<Filled> {
-    let mut problems = preflight(package)?;
+    let mut noticed = preflight(package)?;
     package.graftable().map_err(|problem| WorkbookError::from(*problem))?;
     if package.is_template() {
         let message =
             format!("the file is a template: the output is a workbook (.{})", package.format().extension());
         let template = Problem::error("template", Place::default(), message);
-        problems.push(Problem { severity: Severity::Note, ..template });
+        noticed.push(Problem { severity: Severity::Note, ..template });
     }
     let book = Workbook::read(package)?;
-    let previous = own::own_sheets(&book);
-    let stated = request.replace.as_ref().map(|(_, new)| new).or(request.basis.as_ref());
-    // A basis given on the command line stands in where the workbook has none; where it has one, the cell is kept so
-    // that the new basis can be written into it.
-    let mut appraisal =
-        resolve(package, &book, &Options { roles: &request.roles, basis: stated.map(String::as_str) })?;
-    problems.append(&mut appraisal.problems);
-    // What the workbook itself declares, where it does.
-    let declared = match stated {
-        Some(_) => resolve(package, &book, &Options { roles: &request.roles, basis: None }).ok(),
-        None => None,
+    let parts = match &request.plan {
+        Some(plan) => plan.parts(&book)?.into_iter().map(Some).collect(),
+        None => vec![None],
     };
-    if let Some((old, _)) = &request.replace {
-        require_basis(&appraisal, declared.as_ref(), old, catalogue)?;
+    let own = own::own_sheets(&book);
+    let left = work::left_for(&parts, &own);
+    let previous: Vec<own::OwnSheet> = left.iter().flatten().cloned().collect();
+    let run = Run { package, book: &book, request, catalogue, own: &own, previous: &previous };
+    let mut works = begun(&run, &parts, &left)?;
+    for work in &mut works {
+        work.problems.splice(0..0, noticed.iter().cloned());
     }
-    let (outcomes, found) = value(&appraisal, catalogue)?;
-    problems.extend(found);
-    let companions = companions(&appraisal, &outcomes, catalogue, &mut problems);
-    let sensitivity = sensitivity(&appraisal, &outcomes, &request.against, catalogue)?;
-    problems.extend(sensitivity.comparison.problems.iter().cloned());
-    let names = SheetNames::choose(&foreign_sheets(&book, &previous));
-    let layout = Layout::new(&appraisal, &outcomes, &names);
+    work::check_apart(&works)?;
 
-    let earlier = own::written(package, &book, &previous, &names)?;
-    let plan_with = |stale: &Stale| -> Result<Plan> {
-        let ways = Ways {
-            previous: &previous,
-            written: &earlier,
-            formulas: request.formulas,
-            replace_formulas: request.replace_formulas,
-            stale,
-        };
-        let mut plan = plan_targets(&appraisal, &outcomes, &layout, &ways);
-        if let Some(basis) = stated {
-            plan_basis(&mut plan, package, &book, &appraisal, &outcomes, basis)?;
-        }
-        Ok(plan)
-    };
-    let mut plan = plan_with(&Stale::new())?;
-    let carried = own::carried(package, &book, &previous, &names)?;
-
-    let written: Vec<SheetRange> = plan.changed.clone();
+    let written: Vec<SheetRange> = works.iter().flat_map(|work| work.plan.changed.clone()).collect();
     let dependents = stale::dependents(package, &book, &written)?;
     let foreign =
         dependents.cells.iter().filter(|(sheet, _)| !previous.iter().any(|own| own.index == **sheet));
     let stale: Stale =
         foreign.map(|(sheet, cells)| (book.sheets[*sheet].name.clone(), cells.clone())).collect();
-    if plan.cells.iter().any(|cell| !cell.filled && follow::any(&stale, &cell.at)) {
-        // Formulas left in targets that depend on what is written: what they show is from before.
-        plan = plan_with(&stale)?;
+    let mut writes: BTreeMap<String, BTreeMap<Cell, CellWrite>> = BTreeMap::new();
+    for work in &mut works {
+        work.follow(&run, &stale, &written)?;
+        work.problems.extend(dependents.warnings.iter().cloned());
+        for (sheet, cells) in std::mem::take(&mut work.plan.writes) {
+            writes.entry(sheet).or_default().extend(cells);
+        }
     }
-    problems.append(&mut plan.problems);
-    state(&mut appraisal, &plan, package, &book)?;
-    follow::mark(&mut appraisal, &stale, &written, &mut problems);
-    problems.extend(dependents.warnings);
-    let unknown = follow::unknown(&appraisal, &stale, &plan.cells);
     for (name, cells) in stale {
-        let writes = plan.writes.entry(name).or_default();
+        let writes = writes.entry(name).or_default();
         for cell in cells {
             writes.entry(cell).or_insert(CellWrite::DropValue);
         }
     }
 
-    let meta = meta(package, &outcomes, request);
-    let input = AuditInput {
-        appraisal: &appraisal,
-        outcomes: &outcomes,
-        names: &names,
-        meta: &meta,
-        cells: &plan.cells,
-        changes: &plan.changes,
-        problems: &problems,
-        companions: &companions,
-        sensitivity: &sensitivity,
-        carried: &carried,
-        differs: &differs(),
-    };
-    let built = build(&input, &layout)?;
+    let built = composed(&works)?;
     let ours = Package::from_bytes("audit.xlsx", built.bytes)?;
     let leaving: Vec<String> = previous.iter().map(|sheet| sheet.name.clone()).collect();
     let grafted = graft(
@@ -204,28 +175,133 @@ pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> 
         },
     )?;
     let mut changes = grafted.changes;
-    let mut verdict = built.verdict;
-    patch(&mut changes, package, &book, &plan.writes)?;
+    prepare(package, &mut changes)?;
+    patch(&mut changes, package, &book, &writes)?;
     let mut bytes = package.write(&changes)?;
+    let unknown: Vec<SheetRange> = works.iter().flat_map(|work| work.unknown.clone()).collect();
     if !unknown.is_empty() {
         let made = Package::from_bytes(package.file_name(), bytes)?;
-        follow::forget(&made, &unknown, &grafted.sheets, &mut plan.writes, &mut changes)?;
-        patch(&mut changes, package, &book, &plan.writes)?;
+        follow::forget(&made, &unknown, &grafted.sheets, &mut writes, &mut changes)?;
+        patch(&mut changes, package, &book, &writes)?;
         bytes = package.write(&changes)?;
-        if verdict == VERDICT_AGREES {
-            verdict = follow::AWAITS.to_owned();
-        }
+    }
+    let (mut report, meta) = (report(&works, built.verdicts), work::meta_of_all(&works));
+    if !request.settle {
+        report.awaiting = awaiting(&writes);
+        let bytes = sealed(bytes, &Record::filled(&meta, &report))?;
+        changes.add.push((record_part().to_owned(), Vec::new()));
+        changes.forget_contents();
+        verify(
+            package,
+            &bytes,
+            &Expected { changes: &changes, writes: &writes, own_sheets: &grafted.sheets },
+        )?;
+        return Ok(Filled { bytes, report, meta });
     }
     changes.forget_contents();
-    verify(
-        package,
-        &bytes,
-        &Expected { changes: &changes, writes: &plan.writes, own_sheets: &grafted.sheets },
-    )?;
-    let options = option_reports(&appraisal, &outcomes, &companions);
-    let not_valued = not_valued(&appraisal);
-    let report = Report { options, problems, filled: plan.filled, ticked: plan.ticked, not_valued, verdict };
-    Ok(Filled { bytes, report })
+    verify(package, &bytes, &Expected { changes: &changes, writes: &writes, own_sheets: &grafted.sheets })?;
+    let bytes = settled(package.file_name(), bytes, &meta, &mut report)?;
+    Ok(Filled { bytes, report, meta })
+}
+
+/// The output with a result in every formula, sealed; and a verdict that rested on such results as it is now.
+fn settled(name: &str, bytes: Vec<u8>, meta: &Meta, report: &mut Report) -> Result<Vec<u8>> {
+    let made = Package::from_bytes(name, bytes)?;
+    let book = Workbook::read(&made)?;
+    let writes = settle::settled(&made, &book)?;
+    settle::settle_verdicts(&book, &writes, report);
+    let mut changes = Changes::default();
+    patch(&mut changes, &made, &book, &writes)?;
+    let bytes = sealed(made.write(&changes)?, &Record::filled(meta, report))?;
+    changes.add.push((record_part().to_owned(), Vec::new()));
+    changes.forget_contents();
+    verify(&made, &bytes, &Expected { changes: &changes, writes: &writes, own_sheets: &[] })?;
+    Ok(bytes)
+}
+
+/// The formulas that have no result until a spreadsheet program opens the output, by sheet in words.
+fn awaiting(writes: &settle::Writes) -> Vec<String> {
+    let blank =
+        |write: &CellWrite| matches!(write, CellWrite::DropValue | CellWrite::Formula(_, Cached::None));
+    let cells = |cells: &BTreeMap<Cell, CellWrite>| -> Vec<Cell> {
+        cells.iter().filter(|(_, write)| blank(write)).map(|(cell, _)| *cell).collect()
+    };
+    writes.iter().filter_map(|(sheet, all)| settle::in_words(sheet, &cells(all))).collect()
+}
+
+/// Every appraisal, resolved, valued and decided.
+fn begun(run: &Run<'_>, parts: &[Option<Part>], left: &[Vec<own::OwnSheet>]) -> Result<Vec<Work>> {
+    let mut taken = foreign_sheets(run.book, run.previous);
+    let (mut works, mut problems) = (Vec::new(), Vec::new());
+    for (part, left) in parts.iter().zip(left) {
+        match Work::begin(run, part.as_ref(), left, &taken) {
+            Ok(work) => {
+                taken.extend(work.names.all().map(str::to_owned));
+                works.push(work);
+            }
+            Err(error) => problems.extend(error.problems().iter().cloned()),
+        }
+    }
+    if problems.is_empty() { Ok(works) } else { Err(each_once(problems).into()) }
+}
+
+/// hence's sheets of every appraisal in one package.
+struct Built {
+    bytes: Vec<u8>,
+    charts: Vec<crate::graft::ChartFinish>,
+    names: Vec<crate::names_edit::NewName>,
+    /// One an appraisal.
+    verdicts: Vec<String>,
+}
+
+/// Composes the sheets of every appraisal; the first one's summary gathers the verdicts of several.
+fn composed(works: &[Work]) -> Result<Built> {
+    let differs = differs(works.len() > 1 || works[0].name.is_some());
+    let mut siblings: Vec<sheets::Sibling> = Vec::new();
+    let mut all: Vec<Composed> = Vec::new();
+    for work in works.iter().rev() {
+        let first = all.len() + 1 == works.len();
+        let composed =
+            sheets::compose(&work.audit(&differs, if first { &siblings } else { &[] }), &work.layout);
+        siblings.insert(0, sheets::Sibling::of(&work.names, work.name.as_deref(), &composed));
+        all.insert(0, composed);
+    }
+    let mut verdicts: Vec<String> = all.iter().map(|composed| composed.built.verdict.clone()).collect();
+    for (verdict, work) in verdicts.iter_mut().zip(works) {
+        if !work.unknown.is_empty() && verdict == VERDICT_AGREES {
+            follow::AWAITS.clone_into(verdict);
+        }
+    }
+    let bytes = sheets::package(&all)?;
+    let (mut charts, mut names) = (Vec::new(), Vec::new());
+    for composed in all {
+        charts.extend(composed.built.charts);
+        names.extend(composed.built.names);
+    }
+    Ok(Built { bytes, charts, names, verdicts })
+}
+
+fn report(works: &[Work], verdicts: Vec<String>) -> Report {
+    let problems = works.iter().flat_map(|work| work.problems.iter().cloned()).collect();
+    let appraisals = works.iter().zip(&verdicts).filter_map(|(work, verdict)| work.report(verdict)).collect();
+    let all = works.iter().map(|work| work.name.as_deref().unwrap_or_default()).zip(verdicts);
+    Report {
+        options: works.iter().flat_map(Work::options).collect(),
+        appraisals,
+        problems: each_once(problems),
+        filled: works.iter().map(|work| work.plan.filled).sum(),
+        ticked: works.iter().map(|work| work.plan.ticked).sum(),
+        not_valued: works.iter().flat_map(Work::not_valued).collect(),
+        awaiting: Vec::new(),
+        verdict: sheets::overall(&all.collect::<Vec<_>>()),
+    }
+}
+
+/// What several appraisals have in common is said once.
+fn each_once(problems: Vec<Problem>) -> Vec<Problem> {
+    let mut seen = BTreeSet::new();
+    let id = |problem: &Problem| format!("{problem} {:?} {:?}", problem.severity, problem.hint);
+    problems.into_iter().filter(|problem| seen.insert(id(problem))).collect()
 }
 
 /// Rows of numbers along the years that no role names.
@@ -242,6 +318,7 @@ pub(crate) fn not_valued(appraisal: &Appraisal) -> Vec<String> {
         })
         .collect()
 }
+
 /// The sheets with what is written into them.
 fn patch(
     changes: &mut Changes,
@@ -259,192 +336,11 @@ fn patch(
     Ok(())
 }
 
-/// The basis that the workbook itself declares must be OLD in every option.
-fn require_basis(
-    appraisal: &Appraisal,
-    declared: Option<&Appraisal>,
-    old: &str,
-    catalogue: &Catalogue,
-) -> Result<()> {
-    let parse = |text: &str, place: Place| -> Result<Basis> {
-        Basis::parse(text, catalogue).map_err(|error| from_core(&error, place).into())
-    };
-    let wanted = parse(old, Place::name("--replace"))?.canonical();
-    let Some(declared) = declared else {
-        let place = Place::name(&appraisal.choices[0].name);
-        let message = format!("the workbook declares no basis, so it is not {wanted}");
-        return Err(Problem::error("basis-differs", place, message)
-            .hint("--basis instead of --replace")
-            .into());
-    };
-    let mut problems = Vec::new();
-    for choice in &declared.choices {
-        let place = given_place(&choice.basis);
-        let found = parse(&choice.basis.value, place.clone())?.canonical();
-        let problem = Problem::error("basis-differs", place, format!("the basis is {found}, not {wanted}"))
-            .hint("leave this workbook out, or name its basis in --replace");
-        if found != wanted && !problems.contains(&problem) {
-            problems.push(problem);
-        }
-    }
-    if problems.is_empty() { Ok(()) } else { Err(problems.into()) }
-}
-
-/// The new basis goes into every cell that states the old one, and a timing that it states into the timing's cell.
-fn plan_basis(
-    plan: &mut Plan,
-    package: &Package,
-    book: &Workbook,
-    appraisal: &Appraisal,
-    outcomes: &[ChoiceOutcome],
-    basis: &str,
-) -> Result<()> {
-    let mut seen = BTreeSet::new();
-    for (choice, outcome) in appraisal.choices.iter().zip(outcomes) {
-        let Some(at) = &choice.basis.at else {
-            let problem = Problem::warning(
-                "no-basis-cell",
-                Place::name(&choice.name),
-                "the workbook states no basis in a cell, so the new one stands on the audit sheets alone",
-            )
-            .hint("name a cell hence_basis");
-            plan.problems.push(problem);
-            continue;
-        };
-        if let Some(timing) = &choice.timing
-            && let Some(cell) = &timing.at
-            && timing.value != outcome.timing
-            && outcome.basis.stated() != (None, None)
-            && seen.insert(cell.clone())
-        {
-            let held = cell_held(package, book, cell)?;
-            let write = CellWrite::Text(outcome.timing.to_string());
-            overwrite(plan, timing, &held, "timing", write)?;
-        }
-        if !seen.insert(at.clone()) {
-            continue;
-        }
-        let held = cell_held(package, book, at)?;
-        if shown(&held) == basis {
-            continue;
-        }
-        // Where the cell held a number, formulas may count with it: a flat yearly rate stays a number.
-        let write = match (&held.value, outcome.basis.spec()) {
-            (Value::Number(old), Spec::Flat { rate, compounding: Compounding::Yearly })
-                if outcome.basis.stated() == (None, None) && outcome.basis.schedule().is_none() =>
-            {
-                if old == rate {
-                    continue;
-                }
-                CellWrite::Number(*rate)
-            }
-            (Value::Number(_), _) => {
-                let message = "the cell held a number and now holds a text, which formulas cannot count with";
-                plan.problems.push(
-                    Problem::warning("basis-text", given_place(&choice.basis), message)
-                        .hint("look at the formulas that use the cell"),
-                );
-                CellWrite::Text(basis.to_owned())
-            }
-            _ => CellWrite::Text(basis.to_owned()),
-        };
-        overwrite(plan, &choice.basis, &held, "basis", write)?;
-    }
-    Ok(())
-}
-
-/// The settings as the output will hold them: a basis (or a timing) that this fill writes is what it states.
-fn state(appraisal: &mut Appraisal, plan: &Plan, package: &Package, book: &Workbook) -> Result<()> {
-    // The workbook's own basis is not read where the command line gives one.
-    for choice in &appraisal.choices {
-        let Some(at) = &choice.basis.at else { continue };
-        if appraisal.settings.iter().any(|setting| setting.at == *at) {
-            continue;
-        }
-        let value = match cell_held(package, book, at)?.value {
-            Value::Number(x) => Stated::Number(x),
-            Value::Text(text) => Stated::Text(text),
-            _ => Stated::Text(String::new()),
-        };
-        let from = choice.basis.from.clone();
-        appraisal.settings.push(Setting { at: at.clone(), from, value });
-    }
-    for setting in &mut appraisal.settings {
-        let writes = plan.writes.get(&setting.at.sheet);
-        match writes.and_then(|writes| writes.get(&setting.at.range.first)) {
-            Some(CellWrite::Number(x)) => setting.value = Stated::Number(*x),
-            Some(CellWrite::Text(text)) => setting.value = Stated::Text(text.clone()),
-            _ => {}
-        }
-    }
-    Ok(())
-}
-
-/// Writes into a cell that was read, unless it holds a formula.
-fn overwrite<T>(
-    plan: &mut Plan,
-    given: &Given<T>,
-    held: &ReadCell,
-    what: &str,
-    write: CellWrite,
-) -> Result<()> {
-    let Some(at) = &given.at else { return Ok(()) };
-    if held.formula.is_some() {
-        let message = format!("the {what} cell holds a formula, which would be lost");
-        return Err(Problem::error("basis-formula", given_place(given), message)
-            .hint(format!("give the name hence_{what} to the cell that the formula takes it from"))
-            .into());
-    }
-    plan.write(at.clone(), what.to_owned(), shown(held), write);
-    Ok(())
-}
-
-fn cell_held(package: &Package, book: &Workbook, at: &SheetRange) -> Result<ReadCell> {
-    let held = Sheets::open(package, book)?.range(at)?;
-    Ok(held.get(at.range.first).cloned().unwrap_or_default())
-}
-
-fn shown(held: &ReadCell) -> String {
-    match &held.value {
-        Value::Number(x) => x.to_string(),
-        Value::Text(text) => text.trim().to_owned(),
-        _ => String::new(),
-    }
-}
-
-fn given_place<T>(given: &Given<T>) -> Place {
-    match &given.at {
-        Some(at) => Place::cells(&at.sheet, at.range).called(&given.from),
-        None => Place::name(&given.from),
-    }
-}
-
 /// The names of sheets that are not hence's own.
-fn foreign_sheets(book: &Workbook, previous: &[OwnSheet]) -> Vec<String> {
+fn foreign_sheets(book: &Workbook, previous: &[own::OwnSheet]) -> Vec<String> {
     let own: BTreeSet<usize> = previous.iter().map(|sheet| sheet.index).collect();
     let sheets = book.sheets.iter().enumerate();
     sheets.filter(|(i, _)| !own.contains(i)).map(|(_, sheet)| sheet.name.clone()).collect()
-}
-
-fn meta(package: &Package, outcomes: &[ChoiceOutcome], request: &FillRequest) -> Meta {
-    let of = |outcome: &ChoiceOutcome| -> String {
-        let own = outcome.streams.iter().filter_map(|stream| stream.own.as_ref()).map(|own| &own.basis);
-        std::iter::once(&outcome.basis).chain(own).map(|basis| basis.canonical() + "\n").collect()
-    };
-    let bases: String = outcomes.iter().map(of).collect();
-    Meta {
-        input_name: package.file_name().to_owned(),
-        input_sha256: sha256(package.bytes()),
-        basis_sha256: sha256(bases.as_bytes()),
-        version: env!("CARGO_PKG_VERSION").to_owned(),
-        as_of: request.as_of.clone(),
-        by: request.by.clone(),
-        formulas: request.formulas,
-    }
-}
-
-fn sha256(bytes: &[u8]) -> String {
-    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
 /// A patch knows the cell but not the sheet: the sheet's name is added here.
@@ -459,11 +355,19 @@ fn in_sheet(error: WorkbookError, sheet: &str) -> WorkbookError {
 }
 
 /// What differs in the package by design, a sentence each, for the audit summary.
-fn differs() -> Vec<String> {
+fn differs(several: bool) -> Vec<String> {
+    let names = match several {
+        false => "the names hence_verdict, hence_own and hence_digest",
+        true => {
+            "the names hence_verdict, one that begins so for each appraisal, hence_own, hence_digest and hence_appraisal"
+        }
+    };
+    let sheets = format!("The sheet list, {names}, and cell formats appended for the new sheets.");
     [
         "Filled cells and hence's own sheets; every other cell is as it was.",
-        "The sheet list, the names hence_verdict, hence_own and hence_digest, and cell formats appended for the new sheets.",
+        &sheets,
         "The list of content types and the workbook's relationships; the calculation chain is removed.",
+        "A record of this fill for later runs (the part hence/record.json), which spreadsheet programs pass over.",
         "The workbook is marked to be calculated when it is opened.",
         "Stored results of formulas that depend on filled cells are removed, so that nothing stale can be read.",
     ]

@@ -81,6 +81,28 @@ impl Kind {
             Kind::Differs => "differs",
         }
     }
+
+    /// In words, for a heading.
+    pub fn words(self) -> &'static str {
+        match self {
+            Kind::FlatForBands => "one flat rate where bands were declared",
+            Kind::OffByPeriod => "factors a period off the declared timing",
+            Kind::MixedTiming => "timings mixed",
+            Kind::ContinuousForYearly => "continuous compounding for yearly",
+            Kind::BandEdge => "a band begins in the wrong year",
+            Kind::WholeHorizonForForward => "a rate for the whole horizon where it is a forward rate",
+            Kind::RoundedFactors => "factors rounded",
+            Kind::NominalOnReal => "a nominal rate on real flows",
+            Kind::HardCoded => "a typed number in a row of formulas",
+            Kind::ShortTotal => "a total that leaves out years or rows",
+            Kind::DoubleCount => "a stream counted twice",
+            Kind::NegativeCost => "a cost with the other sign",
+            Kind::UnitMismatch => "thousands against millions",
+            Kind::YearsBroken => "years missing, repeated or as text",
+            Kind::NoKnownRate => "factors that follow no rate",
+            Kind::Differs => "not what the declared basis gives",
+        }
+    }
 }
 
 /// One mistake.

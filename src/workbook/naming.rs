@@ -82,7 +82,8 @@ pub fn with_suggestions(package: &Package) -> Result<(Naming, Vec<u8>)> {
     report.missing = copy.missing;
     report.problems = copy.problems;
     // Any rate will do to see which rows would be left out, and what a fill would stop at.
-    match resolve(&written, &Workbook::read(&written)?, &Options { roles: &[], basis: Some("0%") }) {
+    match resolve(&written, &Workbook::read(&written)?, &Options { basis: Some("0%"), ..Options::default() })
+    {
         Ok(appraisal) => report.not_named = not_valued(&appraisal),
         Err(error) => {
             let stops = error.problems().iter().filter(|p| p.severity == Severity::Error);

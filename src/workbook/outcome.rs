@@ -42,7 +42,7 @@ pub struct OwnBasis {
 }
 
 /// Totals of an option, or of its increment over the baseline.
-#[derive(Clone, Copy, Debug, Default, PartialEq)]
+#[derive(Clone, Copy, Debug, Default, PartialEq, serde::Serialize, serde::Deserialize)]
 pub struct Totals {
     /// Undiscounted benefits (damages count negative).
     pub benefits: f64,

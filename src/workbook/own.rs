@@ -2,14 +2,14 @@
 
 use std::collections::BTreeMap;
 
-use crate::model::Workbook;
+use crate::model::{DefinedName, Workbook};
 use crate::package::Package;
 use crate::patch::Cached;
 use crate::problem::{Place, Problem, Result};
 use crate::reading::{ReadCell, Sheets, Value};
 use crate::references::{Cell, NameTarget, Range, SheetRange};
 use crate::sheets::changes::{AFTER as AFTER_COLUMN, CELL as CELL_COLUMN, SHEET as SHEET_COLUMN};
-use crate::sheets::own::{DIGEST, FORMULA_MARK, OWN, digest, number_mark, text_mark};
+use crate::sheets::own::{APPRAISAL, DIGEST, FORMULA_MARK, OWN, digest, number_mark, text_mark};
 use crate::sheets::{Carried, SheetNames};
 use crate::writer::{Content, Style};
 
@@ -24,6 +24,8 @@ pub struct OwnSheet {
     pub used: Range,
     /// The digest of what hence wrote, where the mark still has it.
     pub digest: Option<String>,
+    /// The appraisal that it is of, where the workbook has several.
+    pub appraisal: Option<String>,
 }
 
 /// Every own sheet of the workbook.
@@ -34,10 +36,14 @@ pub fn own_sheets(book: &Workbook) -> Vec<OwnSheet> {
             let index = mark.scope?;
             let sheet = book.sheets.get(index)?;
             let NameTarget::Cells(at) = book.resolve(mark) else { return None };
-            let kept =
-                book.names.iter().find(|n| n.scope == Some(index) && n.name.eq_ignore_ascii_case(DIGEST));
-            let digest = kept.map(|name| name.text.trim_matches('"').to_owned());
-            Some(OwnSheet { index, name: sheet.name.clone(), used: at.range, digest })
+            let kept = |word: &str| {
+                let own = |n: &&DefinedName| n.scope == Some(index) && n.name.eq_ignore_ascii_case(word);
+                let text = book.names.iter().find(own).map(|name| name.text.as_str())?;
+                let inner = text.strip_prefix('"').and_then(|text| text.strip_suffix('"')).unwrap_or(text);
+                Some(inner.replace("\"\"", "\""))
+            };
+            let (digest, appraisal) = (kept(DIGEST), kept(APPRAISAL));
+            Some(OwnSheet { index, name: sheet.name.clone(), used: at.range, digest, appraisal })
         })
         .collect()
 }
@@ -148,17 +154,10 @@ fn has_comments(package: &Package, part: &str) -> Result<bool> {
 
 /// The new sheet that takes the notes of an old one; of a renamed one, the summary.
 fn kind_of(old: &str, names: &SheetNames) -> String {
-    let all = [
-        &names.discounting,
-        &names.summary,
-        &names.coverage,
-        &names.checks,
-        &names.sensitivity,
-        &names.changes,
-        &names.charts,
-    ];
-    let stem = |name: &str| name.trim_end_matches(|c: char| c.is_ascii_digit() || c == ' ').to_lowercase();
-    all.into_iter().find(|name| stem(name) == stem(old)).unwrap_or(&names.summary).clone()
+    let old = old.to_lowercase();
+    let kinds = SheetNames::PLAIN.iter().zip(names.all());
+    let mut fitting = kinds.filter(|(plain, _)| old.starts_with(&plain.to_lowercase()));
+    fitting.next().map_or(&names.summary[..], |(_, name)| name).to_owned()
 }
 
 /// What a person typed into a cell, and how it is shown again.

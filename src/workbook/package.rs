@@ -5,6 +5,9 @@ use std::collections::BTreeMap;
 use std::io::Read;
 use std::path::Path;
 
+use sha2::{Digest, Sha256};
+
+use crate::older::Converted;
 use crate::problem::{Place, Problem, Result, WorkbookError};
 
 mod container;
@@ -12,13 +15,16 @@ mod edit;
 mod output;
 mod parts;
 mod sniff;
+mod zip;
 
 pub use container::{MAX_ENTRIES, MAX_FILE, MAX_PART, MAX_RATIO, MAX_TOTAL, RATIO_FROM};
 pub use edit::{NewRelationship, edit_content_types, edit_relationships};
-pub use output::{Changes, may_write, same_file, write_atomically};
+pub(crate) use output::may_replace;
+pub use output::{Changes, Identity, Pending, clear_abandoned, may_write, same_file, write_atomically};
 pub use parts::{Relationship, relationships_part, resolve_target};
 
 pub(crate) use container::Inflated;
+pub(crate) use zip::Zip;
 
 use container::Entry;
 use parts::{ContentTypes, is_strict_kind, read_relationships};
@@ -70,6 +76,17 @@ pub struct Package {
     format: Format,
     template: bool,
     strict: bool,
+    /// The file it was made from, where that is of another format.
+    origin: Option<Origin>,
+}
+
+/// The file of another format that a package holds the values of.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Origin {
+    /// SHA-256 of the file, lower-case hexadecimal.
+    pub sha256: String,
+    /// What of it was left behind, a sentence each.
+    pub lost: Vec<String>,
 }
 
 /// A part name as it is compared: lower case, forward slashes, no leading slash.
@@ -80,18 +97,28 @@ fn key(name: &str) -> String {
 impl Package {
     /// Reads a workbook file into memory and finds its parts. The file is opened for reading only.
     ///
-    /// **Errors**: `cannot-read`, `file-too-large`, and those of [`Package::from_bytes`].
+    /// **Errors**: those of [`Package::read`] and [`Package::from_bytes`].
     pub fn open(path: &Path) -> Result<Package> {
-        let name = path.file_name().unwrap_or(path.as_os_str()).to_string_lossy().into_owned();
+        Package::from_bytes(&Package::name_of(path), Package::read(path)?)
+    }
+
+    /// A file's name in a package, without folders.
+    pub fn name_of(path: &Path) -> String {
+        path.file_name().unwrap_or(path.as_os_str()).to_string_lossy().into_owned()
+    }
+
+    /// The bytes of a file, and one more than allowed of a file that is too large, whatever its length claims.
+    ///
+    /// **Errors**: `cannot-read`.
+    pub fn read(path: &Path) -> Result<Vec<u8>> {
         let failed = |e: std::io::Error| -> WorkbookError {
             Problem::error("cannot-read", Place::default(), format!("{} cannot be read: {e}", path.display()))
                 .into()
         };
         let file = std::fs::File::open(path).map_err(failed)?;
         let mut bytes = Vec::new();
-        // One byte more than allowed tells a file that is too large, whatever its length claims.
         file.take(MAX_FILE + 1).read_to_end(&mut bytes).map_err(failed)?;
-        Package::from_bytes(&name, bytes)
+        Ok(bytes)
     }
 
     /// A package from the bytes of a file; `name` is the file's name, without folders.
@@ -134,9 +161,29 @@ impl Package {
             format: Format::Xlsx,
             template: false,
             strict: false,
+            origin: None,
         };
         package.find_workbook()?;
         Ok(package)
+    }
+
+    /// A package with the values of a file of another format: `original` are that file's bytes.
+    ///
+    /// **Errors**: as [`Package::from_bytes`].
+    pub fn converted(name: &str, original: &[u8], values: Converted) -> Result<Package> {
+        let mut package = Package::from_bytes(name, values.bytes)?;
+        package.origin = Some(Origin { sha256: sha256(original), lost: values.lost });
+        Ok(package)
+    }
+
+    /// The file of another format that this holds the values of, if it does.
+    pub fn origin(&self) -> Option<&Origin> {
+        self.origin.as_ref()
+    }
+
+    /// SHA-256 of the file that was read, lower-case hexadecimal.
+    pub fn sha256(&self) -> String {
+        self.origin.as_ref().map_or_else(|| sha256(&self.bytes), |origin| origin.sha256.clone())
     }
 
     fn find_workbook(&mut self) -> Result<()> {
@@ -297,6 +344,11 @@ impl Package {
     pub fn write(&self, changes: &Changes) -> Result<Vec<u8>> {
         output::write(self, changes)
     }
+}
+
+/// SHA-256 as lower-case hexadecimal.
+pub fn sha256(bytes: &[u8]) -> String {
+    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
 fn not_a_workbook(why: &str) -> WorkbookError {

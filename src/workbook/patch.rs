@@ -1,7 +1,10 @@
 //! Splicing of single cells into a sheet part, everything else left byte for byte.
 
+mod blank;
 mod cell;
 mod layout;
+
+pub(crate) use blank::without_result;
 
 use std::collections::BTreeMap;
 
@@ -38,12 +41,32 @@ pub enum CellWrite {
     Formula(String, Cached),
     /// The formula stays, its cached value goes (a dependent of a filled cell).
     DropValue,
+    /// The formula stays and gets this result.
+    Result(Settled),
+}
+
+/// A result that a spreadsheet program computed.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Settled {
+    /// A number.
+    Number(f64),
+    /// A text.
+    Text(String),
+    /// True or false.
+    Logical(bool),
+    /// An error value, `#DIV/0!`.
+    Error(String),
 }
 
 impl CellWrite {
-    /// Does the cell get new content (and not just lose its cached value)?
+    /// Does the cell get new content (and not just another cached value, or none)?
     pub fn overwrites(&self) -> bool {
-        !matches!(self, CellWrite::DropValue)
+        !self.keeps_formula()
+    }
+
+    /// Does the cell keep its formula?
+    pub fn keeps_formula(&self) -> bool {
+        matches!(self, CellWrite::DropValue | CellWrite::Result(_))
     }
 }
 
@@ -168,8 +191,12 @@ fn refusals(layout: &Layout, writes: &BTreeMap<Cell, CellWrite>) -> Vec<Problem>
         {
             problems.push(block_refusal(at, range, *block));
         }
-        if *write == CellWrite::DropValue && !layout.gives_a_value(at) {
-            problems.push(problem("no-formula", at, "holds no formula, so its value cannot be dropped"));
+        if write.keeps_formula() && !layout.gives_a_value(at) {
+            problems.push(problem(
+                "no-formula",
+                at,
+                "holds no formula, so its value cannot be dropped or set",
+            ));
         }
     }
     problems

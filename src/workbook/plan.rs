@@ -40,7 +40,7 @@ impl Plan {
             CellWrite::Number(x) => x.to_string(),
             CellWrite::Text(text) => text.clone(),
             CellWrite::Formula(text, _) => format!("={text}"),
-            CellWrite::DropValue => String::new(),
+            CellWrite::DropValue | CellWrite::Result(_) => String::new(),
         };
         self.writes.entry(at.sheet.clone()).or_default().insert(at.range.first, write);
         self.changes.push(Change { at: at.clone(), role, before, after });
@@ -54,7 +54,7 @@ pub type Stale = BTreeMap<String, BTreeSet<Cell>>;
 /// What an earlier fill left, and how this one is to go about targets.
 pub struct Ways<'a> {
     /// hence's own sheets in the workbook.
-    pub previous: &'a [OwnSheet],
+    pub own: &'a [OwnSheet],
     /// Formulas that an earlier fill wrote, by place.
     pub written: &'a BTreeMap<String, String>,
     /// Write formulas, not numbers.
@@ -73,8 +73,7 @@ pub fn plan_targets(
     ways: &Ways<'_>,
 ) -> Plan {
     let mut plan = Plan::default();
-    let own: Vec<String> =
-        ways.previous.iter().map(|sheet| format!("{}!", quote_sheet(&sheet.name))).collect();
+    let own: Vec<String> = ways.own.iter().map(|sheet| format!("{}!", quote_sheet(&sheet.name))).collect();
     for (c, choice) in appraisal.choices.iter().enumerate() {
         for (t, target) in choice.targets.iter().enumerate() {
             let results = expected(appraisal, outcomes, layout, c, target);

@@ -37,6 +37,9 @@ use stream::Stream;
 /// `cell-order`, `odd-cell`, `odd-value`, `bad-value`, `bad-range`, `shared-formula`, `formula-size`.
 pub fn preflight(package: &Package) -> Result<Vec<Problem>> {
     let mut problems = Vec::new();
+    if let Some(origin) = package.origin() {
+        problems.push(Problem::warning("values-only", Place::default(), origin.lost.join("; ")));
+    }
     unsafe_names(package, &mut problems);
     let mut done = BTreeSet::new();
     let keep = |result: Result<()>, problems: &mut Vec<Problem>| {

@@ -2,10 +2,13 @@
 
 use std::fmt;
 
-use crate::references::{Area, Range, quote_sheet};
+use serde::{Deserialize, Serialize};
+
+use crate::codes::CODES;
+use crate::references::{Area, Range, SheetRange, quote_sheet};
 
 /// How bad a problem is.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, serde::Serialize)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
 #[serde(rename_all = "lowercase")]
 pub enum Severity {
     /// Worth knowing; changes nothing.
@@ -17,7 +20,7 @@ pub enum Severity {
 }
 
 /// Where in a workbook a problem is.
-#[derive(Clone, Debug, Default, PartialEq, Eq, Hash)]
+#[derive(Clone, Debug, Default, PartialEq, Eq, Hash, Serialize, Deserialize)]
 pub struct Place {
     /// The sheet's name as the user sees it.
     pub sheet: Option<String>,
@@ -25,12 +28,14 @@ pub struct Place {
     pub range: Option<Range>,
     /// The defined name or heading it goes by.
     pub name: Option<String>,
+    /// The line, of a problem that is in a text of its own: a plan file.
+    pub line: Option<u32>,
 }
 
 impl Place {
     /// Cells of a sheet.
     pub fn cells(sheet: &str, range: Range) -> Self {
-        Place { sheet: Some(sheet.to_owned()), range: Some(range), name: None }
+        Place { sheet: Some(sheet.to_owned()), range: Some(range), ..Place::default() }
     }
 
     /// Cells along a row or column; the rectangle around them where they come in pieces.
@@ -40,7 +45,24 @@ impl Place {
 
     /// A defined name, where it has no cells to point at.
     pub fn name(name: &str) -> Self {
-        Place { sheet: None, range: None, name: Some(name.to_owned()) }
+        Place { name: Some(name.to_owned()), ..Place::default() }
+    }
+
+    /// A line of a text.
+    pub fn line(line: u32) -> Self {
+        Place { line: Some(line), ..Place::default() }
+    }
+
+    /// Whether the first of some cells is one of its.
+    pub(crate) fn holds(&self, at: &SheetRange) -> bool {
+        self.sheet.as_ref() == Some(&at.sheet)
+            && self.range.is_some_and(|range| range.contains(at.range.first))
+    }
+
+    /// Its cells without the name they go by: `Sheet1!B2`, for programs.
+    pub fn cells_words(&self) -> String {
+        let name = if self.sheet.is_some() { None } else { self.name.clone() };
+        Place { name, ..self.clone() }.to_string()
     }
 
     /// Adds the defined name or heading in brackets.
@@ -63,13 +85,16 @@ impl fmt::Display for Place {
                 name.as_ref().map_or(Ok(()), |name| write!(f, " [{name}]"))
             }
             (None, _, Some(name)) => write!(f, "[{name}]"),
-            (None, _, None) => write!(f, "workbook"),
+            (None, _, None) => match self.line {
+                Some(line) => write!(f, "line {line}"),
+                None => write!(f, "workbook"),
+            },
         }
     }
 }
 
-/// One problem. Codes are short stable kebab words, listed in [`CODES`](crate::codes::CODES).
-#[derive(Clone, Debug, PartialEq, Eq, Hash)]
+/// One problem. Codes are short stable kebab words, listed in [`CODES`].
+#[derive(Clone, Debug, PartialEq, Eq, Hash, Serialize)]
 pub struct Problem {
     /// The stable word.
     pub code: &'static str,
@@ -102,6 +127,27 @@ impl Problem {
     }
 }
 
+/// A problem as another process wrote it down.
+#[derive(Deserialize)]
+struct Written {
+    #[serde(rename = "code")]
+    word: String,
+    severity: Severity,
+    place: Place,
+    message: String,
+    hint: Option<String>,
+}
+
+impl<'de> Deserialize<'de> for Problem {
+    fn deserialize<D: serde::Deserializer<'de>>(from: D) -> std::result::Result<Self, D::Error> {
+        let Written { word, severity, place, message, hint } = Written::deserialize(from)?;
+        let known = CODES.iter().find(|code| code.code == word);
+        let unknown = || serde::de::Error::custom(format!("{word} is no code of a problem"));
+        let known = known.ok_or_else(unknown)?;
+        Ok(Problem { severity, hint, ..Problem::error(known.code, place, message) })
+    }
+}
+
 impl fmt::Display for Problem {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         write!(f, "{}: {} ({})", self.place, self.message, self.code)
@@ -114,8 +160,9 @@ pub struct WorkbookError {
     problems: Vec<Problem>,
 }
 
-/// Codes of problems that are about files and places, not about what a workbook holds.
-const FILE_CODES: [&str; 4] = ["cannot-read", "cannot-write", "output-exists", "output-is-input"];
+/// Codes of problems that are about files and places, or about what is asked for, not about what a workbook holds.
+const FILE_CODES: [&str; 6] =
+    ["cannot-read", "cannot-write", "output-changed", "output-exists", "output-is-input", "plan-appraisal"];
 
 /// The result of a fallible function of this crate.
 pub type Result<T> = std::result::Result<T, WorkbookError>;

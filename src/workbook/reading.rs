@@ -10,7 +10,7 @@ use calamine::{DataRef, Reader, Xlsx};
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::problem::{Place, Problem, Result};
-use crate::references::{Cell, Range, SheetRange, shift};
+use crate::references::{Cell, MAX_COLUMNS, MAX_ROWS, Range, SheetRange, shift};
 use scan::{RawFormula, Scan};
 
 /// The largest range that is read as one grid.
@@ -138,6 +138,17 @@ impl<'a> Sheets<'a> {
         let read = self.read.entry(at.sheet.clone()).or_default();
         let cells = at.range.cells().map(|cell| read.cells.get(&cell).cloned().unwrap_or_default()).collect();
         Ok(Grid { at: at.clone(), cells })
+    }
+
+    /// Every stored cell of a sheet, row by row.
+    ///
+    /// **Errors**: `missing-sheet`, `unreadable`, `odd-value` (with the cell).
+    pub fn all(&mut self, sheet: &str) -> Result<&BTreeMap<Cell, ReadCell>> {
+        let whole = Range::new(Cell::new(0, 0), Cell::new(MAX_ROWS - 1, MAX_COLUMNS - 1));
+        if !self.read.get(sheet).is_some_and(|read| read.ranges.contains(&whole)) {
+            self.load_sheet(sheet, vec![whole])?;
+        }
+        Ok(&self.read.entry(sheet.to_owned()).or_default().cells)
     }
 
     /// Streams every stored value of a sheet past `see`, keeping none.

@@ -20,7 +20,7 @@ pub const MAX_ROWS: u32 = 1_048_576;
 pub const MAX_COLUMNS: u32 = 16_384;
 
 /// A cell by row and column, both counted from 0.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, serde::Serialize, serde::Deserialize)]
 pub struct Cell {
     /// Row, from 0.
     pub row: u32,
@@ -29,7 +29,7 @@ pub struct Cell {
 }
 
 /// A rectangle of cells, both corners included.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, serde::Serialize, serde::Deserialize)]
 pub struct Range {
     /// Upper left.
     pub first: Cell,

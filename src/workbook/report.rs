@@ -1,14 +1,16 @@
 //! What a run found, for those who print it: one report a workbook, one entry an option.
 
 use hence_core::Payback;
+use serde::{Deserialize, Serialize};
 
 use crate::appraisal::{Appraisal, StreamKind};
+use crate::decide::{Bridge, Rule};
 use crate::outcome::{ChoiceOutcome, Totals};
 use crate::problem::{Problem, Severity};
 use crate::welfare;
 
 /// How a run on one workbook ended.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, serde::Serialize)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
 #[serde(rename_all = "lowercase")]
 pub enum Status {
     /// Nothing is wrong with it.
@@ -28,7 +30,7 @@ impl Status {
 }
 
 /// The same option under the schedule that its body wants run beside the declared one.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 pub struct Companion {
     /// The schedule's id.
     pub id: String,
@@ -39,7 +41,7 @@ pub struct Companion {
 }
 
 /// What flows that are not small against consumption are worth at the base.
-#[derive(Clone, Copy, Debug, PartialEq, serde::Serialize)]
+#[derive(Clone, Copy, Debug, PartialEq, Serialize, Deserialize)]
 pub struct Exact {
     /// The amount that changes welfare as much; none where no amount does.
     pub equivalent: Option<f64>,
@@ -52,14 +54,18 @@ pub struct Exact {
 }
 
 /// What one option comes to.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 pub struct OptionReport {
     /// Its name.
     pub name: String,
+    /// Which of several appraisals of the workbook it is of.
+    pub appraisal: Option<String>,
     /// It is the baseline.
     pub baseline: bool,
     /// The canonical basis.
     pub basis: String,
+    /// The canonical basis that the workbook itself declares, where it was valued on another.
+    pub declared: Option<String>,
     /// The basis in words, with its source.
     pub basis_words: String,
     /// The base in words.
@@ -102,20 +108,43 @@ pub struct OptionReport {
     pub effects: Vec<(String, Option<f64>, Option<f64>)>,
     /// The same under the companion schedule.
     pub companion: Option<Companion>,
+    /// What ranks it among the options.
+    pub decide: Rule,
+    /// From what its workbook held to how it stands now.
+    pub bridge: Bridge,
 }
 
 impl OptionReport {
+    /// Its name, after that of its appraisal where the workbook has several.
+    pub fn called(&self) -> String {
+        match &self.appraisal {
+            Some(appraisal) if *appraisal != self.name => format!("{appraisal}: {}", self.name),
+            _ => self.name.clone(),
+        }
+    }
+
     /// The totals that rank, ratio and NPV use.
     pub fn totals(&self) -> &Totals {
         self.increment.as_ref().unwrap_or(&self.absolute)
     }
 }
 
+/// One of several appraisals in a workbook.
+#[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
+pub struct AppraisalReport {
+    /// Its name, which its options bear too.
+    pub name: String,
+    /// The verdict as written to its audit summary.
+    pub verdict: String,
+}
+
 /// The report on one workbook.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 pub struct Report {
-    /// Its options.
+    /// Its options; of several appraisals, all of them in order.
     pub options: Vec<OptionReport>,
+    /// The appraisals, where the workbook has several.
+    pub appraisals: Vec<AppraisalReport>,
     /// Everything found.
     pub problems: Vec<Problem>,
     /// Cells written, and cells found filled and compared.
@@ -124,7 +153,9 @@ pub struct Report {
     pub ticked: usize,
     /// Rows of numbers along the years that no role names: heading and cells.
     pub not_valued: Vec<String>,
-    /// The verdict as written to the audit summary.
+    /// Formulas of the workbook that have no result until a spreadsheet program opens the output, by sheet in words.
+    pub awaiting: Vec<String>,
+    /// The verdict as written to the audit summary; of several appraisals, that of all.
     pub verdict: String,
 }
 
@@ -152,8 +183,10 @@ pub(crate) fn option_reports(
         .enumerate()
         .map(|(i, (choice, outcome))| OptionReport {
             name: choice.name.clone(),
+            appraisal: None,
             baseline: appraisal.baseline == Some(i),
             basis: outcome.basis.canonical(),
+            declared: None,
             basis_words: outcome.basis.words(),
             base: outcome.base_words.clone(),
             timing: outcome.timing_sentence.clone(),
@@ -201,6 +234,8 @@ pub(crate) fn option_reports(
                 .map(|(effect, (plain, discounted))| (effect.name.clone(), *plain, *discounted))
                 .collect(),
             companion: companions.get(i).cloned().flatten(),
+            decide: appraisal.decide,
+            bridge: Bridge::default(),
         })
         .collect()
 }

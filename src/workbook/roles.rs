@@ -38,6 +38,8 @@ pub enum Role {
     Baseline,
     /// The names of the streams that are the constrained cost.
     Budget,
+    /// The rule by which options are ranked.
+    Decide,
     /// The names of the streams that all options share.
     Shared,
     /// Physical effects.
@@ -86,6 +88,8 @@ pub enum Role {
     Payback,
     /// hence's own name for the verdict cell.
     Verdict,
+    /// Which of several appraisals one of hence's own sheets is of.
+    Appraisal,
     /// hence's own mark on the sheets it wrote.
     Own,
     /// The digest of the texts on hence's own sheets.
@@ -191,6 +195,13 @@ pub const ROLES: &[RoleInfo] = &[
         Takes::NoStream,
         "names of the streams that are the constrained cost",
     ),
+    row(
+        Role::Decide,
+        "decide",
+        Way::In,
+        Takes::NoStream,
+        "what ranks the options: `npv`, `ratio` or `least cost`",
+    ),
     row(Role::Shared, "shared", Way::In, Takes::NoStream, "names of the streams that all options share"),
     row(
         Role::Effect,
@@ -268,7 +279,20 @@ pub const ROLES: &[RoleInfo] = &[
     row(Role::Annual, "annual", Way::Out, Takes::NoStream, "annual equivalent, one cell"),
     row(Role::Irr, "irr", Way::Out, Takes::NoStream, "internal rate of return, one cell"),
     row(Role::Payback, "payback", Way::Out, Takes::NoStream, "discounted payback in years, one cell"),
-    row(Role::Verdict, "verdict", Way::Own, Takes::NoStream, "hence's own name for the verdict cell"),
+    row(
+        Role::Verdict,
+        "verdict",
+        Way::Own,
+        Takes::MayStream,
+        "hence's own name for the verdict cell; with the name of an appraisal, of one among several",
+    ),
+    row(
+        Role::Appraisal,
+        "appraisal",
+        Way::Own,
+        Takes::NoStream,
+        "hence's own note of the appraisal that such a sheet is of",
+    ),
     row(Role::Own, "own", Way::Own, Takes::NoStream, "hence's own mark on the sheets it wrote"),
     row(Role::Digest, "digest", Way::Own, Takes::NoStream, "hence's own digest of the texts on such a sheet"),
 ];
@@ -288,6 +312,33 @@ impl Role {
     /// Whether it is one stream of flows (a cost, benefit, flow or damage, or a block of them).
     pub fn is_stream(self) -> bool {
         matches!(self, Role::Cost | Role::Benefit | Role::Flow | Role::Damage | Role::Costs | Role::Benefits)
+    }
+
+    /// Whether it states something once, in one cell or a list, so that it can be stated without a cell too.
+    pub fn is_setting(self) -> bool {
+        let texts = matches!(
+            self,
+            Role::Base
+                | Role::Basis
+                | Role::Timing
+                | Role::Baseline
+                | Role::Budget
+                | Role::Decide
+                | Role::Shared
+                | Role::Signs
+                | Role::Unit
+                | Role::Tail
+                | Role::PriceBasis
+        );
+        texts || self.is_number()
+    }
+
+    /// Whether it is a setting that is one number.
+    pub fn is_number(self) -> bool {
+        matches!(
+            self,
+            Role::Uplift | Role::Residual | Role::Prices | Role::Growth | Role::Elasticity | Role::Income
+        )
     }
 
     /// Whether it is filled.

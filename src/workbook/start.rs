@@ -30,6 +30,7 @@ mod row {
     pub const BASE: u32 = 2;
     pub const BASIS: u32 = 3;
     pub const TIMING: u32 = 4;
+    pub const PRICES: u32 = 5;
     pub const YEARS: u32 = 6;
     pub const COSTS: u32 = YEARS + 2;
     pub const ALL_COSTS: u32 = COSTS + LINES;
@@ -66,6 +67,16 @@ const BASES: [(&str, &str); 5] = [
     ),
     ("0.5 of (1%), 0.5 of (7%)", "Two views of the rate, weighted; the factors are averaged."),
     ("uk-2026", "A published schedule by its id: `hence schedules` lists them with their sources."),
+];
+
+/// The prices of the flows, and what they mean.
+const PRICES: [(&str, &str); 3] = [
+    (
+        "real",
+        "Amounts without inflation, all in the prices of one year. This is what the sheet says until changed.",
+    ),
+    ("real 2026", "The same, with the year of the prices."),
+    ("nominal", "Money of the day, inflation included."),
 ];
 
 /// Writes the workbook.
@@ -112,12 +123,14 @@ fn settings(sheet: &mut Form, names: &mut Names) {
         (row::BASE, "Base year", "base", "the year to which values are discounted"),
         (row::BASIS, "Discount rate", "basis", "a rate, a rate line or a schedule's id"),
         (row::TIMING, "Timing", "timing", "where in their year flows and the base stand"),
+        (row::PRICES, "Prices", "price_basis", "real (in the prices of one year) or nominal"),
     ];
     for (row, label, role, remark) in settings {
         sheet.text(row, 0, Look::Text, label);
         match row {
             row::BASE => sheet.number(row, SETTING.0, Look::TypedSetting, f64::from(FIRST_YEAR)),
             row::TIMING => sheet.text(row, SETTING.0, Look::TypedSetting, TIMINGS[0].0),
+            row::PRICES => sheet.text(row, SETTING.0, Look::TypedSetting, PRICES[0].0),
             _ => sheet.blank(row, SETTING.0, Look::TypedSetting),
         }
         sheet.merge(row, SETTING.0, SETTING.1);
@@ -130,6 +143,9 @@ fn settings(sheet: &mut Form, names: &mut Names) {
     let choices = format!("'{HELP}'!$A${}:$A${}", TIMING_ROW + 1, TIMING_ROW + TIMINGS.len() as u32);
     let message = "The base year is undiscounted where flows and base stand at the same point.";
     sheet.prompt(row::TIMING, SETTING.0, "Timing", message, Some(&choices));
+    let message = "It stands at real until changed. Write nominal where the amounts below hold inflation: real flows need a \
+                   real rate, nominal ones a nominal rate.";
+    sheet.prompt(row::PRICES, SETTING.0, "Prices", message, None);
 }
 
 /// One formula in every year's column, from the column's letters.
@@ -233,7 +249,7 @@ fn help() -> Form {
     sheet.columns(1, 1, 78.0);
     sheet.text(0, 0, Look::Title, HELP);
     let steps = [
-        "1. Type the base year and the discount rate. Choose the timing.",
+        "1. Type the base year and the discount rate. Choose the timing. Say which prices the amounts are in.",
         "2. Type over the labels of costs and benefits, and enter one amount a year. Blank cells count as 0.",
         "3. Need more lines? Insert rows between two shaded ones. More years? Insert columns before the last one and copy the formulas.",
         "4. Save and close, then run: hence fill FILE. The copy FILE.audited.xlsx holds factors, present values and the audit.",
@@ -253,7 +269,14 @@ fn help() -> Form {
         sheet.text(row, 0, Look::Text, timing);
         sheet.text(row, 1, Look::Text, meaning);
     }
-    let names = TIMING_ROW + TIMINGS.len() as u32 + 1;
+    let prices = TIMING_ROW + TIMINGS.len() as u32 + 1;
+    sheet.text(prices, 0, Look::Section, "Prices, to copy");
+    sheet.text(prices, 1, Look::Section, "What it means");
+    for (row, (text, meaning)) in (prices + 1..).zip(PRICES) {
+        sheet.text(row, 0, Look::Text, text);
+        sheet.text(row, 1, Look::Text, meaning);
+    }
+    let names = prices + PRICES.len() as u32 + 2;
     sheet.text(names, 0, Look::Section, "Names");
     sheet.blank(names, 1, Look::Section);
     let remarks = [

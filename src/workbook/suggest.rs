@@ -16,6 +16,11 @@ use crate::roles::{self, Role, Way, key};
 use runs::Run;
 use words::Meaning;
 
+/// Whether a heading says that its row holds discount factors.
+pub(crate) fn reads_as_factors(heading: &str) -> bool {
+    matches!(words::meaning(heading), Some(Meaning::Line(Role::Factor, _)))
+}
+
 /// Cells beyond these are not looked at: an appraisal begins near the corner of its sheet.
 const ROWS: u32 = 1_000;
 /// See [`ROWS`].
@@ -352,7 +357,7 @@ fn signs(numbers: &[f64]) -> (bool, bool) {
 }
 
 /// A heading as part of a name: letters, digits and single underscores, at most 40 characters.
-fn slug(heading: &str) -> String {
+pub(crate) fn slug(heading: &str) -> String {
     let long = key(heading).replace(' ', "_");
     let cut: String = long.chars().take(40).collect();
     cut.trim_matches('_').to_owned()

@@ -13,6 +13,7 @@ use crate::dated;
 use crate::measuring::{Further, Moments, measure_gross, measure_net, measure_units};
 use crate::outcome::{ChoiceOutcome, OwnBasis, StreamOutcome, Totals};
 use crate::problem::{Place, Problem, Result, WorkbookError};
+use crate::ranking::Worth;
 use crate::references::{Area, Range, SheetRange};
 use crate::welfare;
 
@@ -353,13 +354,13 @@ fn value_stream(
     }
 }
 
-/// Net present value of an option as it stands on another curve; streams with a basis of their own keep it.
-pub(crate) fn npv_on(
+/// What an option is worth as it stands on another curve; streams with a basis of their own keep it.
+pub(crate) fn worth_on(
     appraisal: &Appraisal,
     choice: &Choice,
     outcome: &ChoiceOutcome,
     curve: &Curve,
-) -> Result<f64> {
+) -> Result<Worth> {
     let timing = outcome.timing;
     let axis = &appraisal.axes[choice.axis];
     let clock = Clock::new(axis, &choice.base.value, timing)?;
@@ -378,7 +379,7 @@ pub(crate) fn npv_on(
                 * value_stream(stream, (choice, axis, valued.weight), &clock, curve, &factors)?.0.pv,
         );
     }
-    Ok(sum(&terms))
+    Ok(Worth::of_streams(&terms))
 }
 
 /// The part of a stream that stands above (benefits) or below (costs) the line: (benefit, cost) signs.

@@ -71,6 +71,58 @@ pub fn verify(input: &Package, output: &[u8], expected: &Expected) -> Result<Vec
     Ok(by_design(input, &before, expected))
 }
 
+/// Checks a marked copy against the workbook it was made from: as [`verify`], of an output in which no cell is written.
+///
+/// Sheets with notes name their drawing and are else the same; every cell of the workbook reads as before.
+///
+/// **Arguments**: `noted` are the parts of notes (comments, their drawings, relationships and sheets) that may change.
+/// **Errors**: `output-differs`, with the place; those of opening a package.
+pub fn verify_marked(
+    input: &Package,
+    output: &[u8],
+    changes: &Changes,
+    own: &[GraftedSheet],
+    noted: &BTreeSet<String>,
+) -> Result<()> {
+    let made = Package::from_bytes(input.file_name(), output.to_vec())?;
+    let before = Workbook::read(input)?;
+    same_parts(input, &made, changes)?;
+    for name in changes.replace.keys().filter(|name| book_part(input, name).is_none()) {
+        let sheet = before.sheets.iter().find(|sheet| sheet.part.eq_ignore_ascii_case(name));
+        if !noted.contains(name) {
+            return Err(differs(Place::name(name), "the part was changed, which no mark may do"));
+        }
+        if let Some(sheet) = sheet {
+            let part = |package: &Package| package.part(name).map(Option::unwrap_or_default);
+            let (old, new) = (part(input)?, part(&made)?);
+            if !adds_a_drawing(&old, &new) {
+                return Err(differs(sheet_place(&sheet.name), "the sheet is not the same but for its notes"));
+            }
+        }
+    }
+    for name in noted.iter().filter(|name| made.has(name) && !name.ends_with(".vml")) {
+        crate::splice::Element::root(&made.part(name)?.unwrap_or_default())?;
+    }
+    let (changes, writes) = (&Changes::default(), &BTreeMap::new());
+    second_reader(input, output, &Expected { changes, writes, own_sheets: own })
+}
+
+/// Whether one element that names a drawing is all that a sheet has more than before.
+fn adds_a_drawing(old: &[u8], new: &[u8]) -> bool {
+    let same = old.iter().zip(new).take_while(|(a, b)| a == b).count();
+    let more = new.len().saturating_sub(old.len());
+    // Where the bytes behind the insertion begin alike, the place found lies behind the true one.
+    (0..=same).rev().take(64).any(|at| {
+        let inserted = new.get(at..at + more).unwrap_or_default();
+        let named = String::from_utf8_lossy(inserted);
+        named.starts_with('<')
+            && named.ends_with("/>")
+            && named.matches('<').count() == 1
+            && named.contains("legacyDrawing ")
+            && new[at + more..] == old[at..]
+    })
+}
+
 fn sheet_place(name: &str) -> Place {
     Place { sheet: Some(name.to_owned()), ..Place::default() }
 }

@@ -150,6 +150,8 @@ pub enum Content {
     Text(String),
     /// A number.
     Number(f64),
+    /// True or false.
+    Logical(bool),
     /// A formula without its equals sign, and its result.
     Formula(String, Cached),
 }
@@ -198,6 +200,11 @@ impl Sheet {
     /// Writes a number.
     pub fn number(&mut self, row: u32, col: u32, style: Style, number: f64) {
         self.cells.insert(Cell { row, col }, (Content::Number(number), style));
+    }
+
+    /// Writes true or false.
+    pub fn logical(&mut self, row: u32, col: u32, style: Style, truth: bool) {
+        self.cells.insert(Cell { row, col }, (Content::Logical(truth), style));
     }
 
     /// Writes a formula with its result.
@@ -316,12 +323,13 @@ pub fn package(sheets: &[Sheet], names: &[(&str, &str)]) -> Result<Vec<u8>> {
     std::fs::read(path).map_err(|e| unwritten("the audit sheets cannot be read back", &e))
 }
 
-/// Writes the sheets as a workbook to be opened as it is, the same bytes every time.
+/// Writes the sheets as a workbook to be opened as it is, the same bytes every time, with names as [`package`] takes
+/// them; a name of one sheet reads `Sheet!name`.
 ///
 /// # Errors
 /// As [`package`].
-pub fn workbook(sheets: &[Sheet]) -> Result<Vec<u8>> {
-    form::unstamped(package(sheets, &[])?)
+pub fn workbook(sheets: &[Sheet], names: &[(&str, &str)]) -> Result<Vec<u8>> {
+    form::unstamped(package(sheets, names)?)
 }
 
 fn failed(what: &str, why: &dyn std::fmt::Display) -> crate::problem::WorkbookError {
@@ -419,6 +427,7 @@ fn write_cell(out: &mut Worksheet<'_>, cell: Cell, content: &Content, format: &F
     match content {
         Content::Text(text) => out.write_string(row, col, &escaped(text), Some(format)),
         Content::Number(x) => out.write_number(row, col, *x, Some(format)),
+        Content::Logical(truth) => out.write_boolean(row, col, *truth, Some(format)),
         Content::Formula(text, cached) => {
             let text = format!("={text}");
             match cached {

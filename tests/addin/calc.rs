@@ -132,7 +132,7 @@ impl Kept {
         match self {
             Kept::Bits => found == format!("{:016x}", due.to_bits()),
             Kept::Digits => found.parse().is_ok_and(|found: f64| {
-                let unit = 10f64.powi(due.abs().log10().floor() as i32 - 14);
+                let unit = 10f64.powf(due.abs().log10().floor() - 14.0);
                 found == due || (found - due).abs() <= 0.5 * unit + f64::EPSILON * due.abs()
             }),
         }

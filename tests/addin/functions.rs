@@ -81,6 +81,7 @@ fn factors_and_rates_are_those_of_the_curve() {
             ("FACTOR", Curve::factor as fn(&Curve, f64) -> hence_core::Result<f64>),
             ("RATE", Curve::forward_rate),
             ("MEANRATE", Curve::mean_rate),
+            ("INSTANT", Curve::instantaneous_rate),
         ] {
             let due: Vec<_> = offsets.iter().map(|t| f(&curve, *t).map_or(NA, Cell::Number)).collect();
             assert_eq!(sheet(name, &given()).cells(), due, "{name} of {line}");
@@ -262,6 +263,40 @@ fn kinds_of_errors() {
         (NUM, "ANNUAL", vec![n(0.035), n(1.0), n(0.0)]),
         (NUM, "ANNUAL", vec![n(0.035), n(1.0), n(1e9)]),
         (NUM, "IRR", vec![row(numbers([0.0, 1.0])), row(numbers([1.0, 1.0]))]),
+        (NUM, "MULTIPLIER", vec![n(1.0), n(0.0)]),
+        (VALUE, "SWITCH", vec![t(RAMSEY), t("luck"), n(1.0), n(1.0)]),
+        (VALUE, "SWITCH", vec![t("3.5%"), t("growth"), row(numbers([0.0, 1.0])), row(numbers([-1.0, 2.0]))]),
+        (VALUE, "SWITCH", vec![t(RAMSEY), t("rate"), n(1.0), n(1.0), None, t("flows averaged")]),
+        (NUM, "SWITCH", vec![t(RAMSEY), t("rate"), row(numbers([0.0, 1.0])), row(numbers([1.0, 1.0]))]),
+        (VALUE, "DRAWS", vec![t("wide"), n(1.0), n(0.02), n(1.0), n(1.0)]),
+        (NUM, "DRAWS", vec![n(0.01), n(21.0), n(0.02), n(1.0), n(1.0)]),
+        (NUM, "DRAWS", vec![n(0.01), n(1.0), t("normal mean 0% sd 90%"), n(1.0), n(1.0)]),
+        (NUM, "DRAWS", vec![n(0.01), n(1.0), n(0.02), n(1.0), n(1.0), None, None, None, n(101.0)]),
+        (NUM, "DRAWS", vec![n(0.01), n(1.0), n(0.02), n(1.0), n(1.0), None, None, None, None, n(2e6)]),
+        (NUM, "DRAWS", vec![n(0.01), n(1.0), n(0.02), n(1.0), n(1.0), None, None, None, None, None, n(0.5)]),
+        (NUM, "HAZARD", vec![n(1.0)]),
+        (VALUE, "HAZARD", vec![n(0.01), t("daily")]),
+        (NUM, "WAITING", vec![n(1.0)]),
+        (VALUE, "BRACKETS", vec![row(numbers([0.4, 0.3])), row(numbers([0.3, 0.2])), n(1.0)]),
+        (NUM, "BRACKETS", vec![n(0.4), n(0.3), n(0.0)]),
+        (VALUE, "GROWTH", vec![column(numbers([1.0, 2.0, 3.0]))]),
+        (NUM, "GROWTH", vec![column(numbers([1.0, 2.0, 0.0, 3.0]))]),
+        (
+            VALUE,
+            "GROWTH",
+            vec![column(numbers([1.0, 2.0, 3.0, 4.0])), column(numbers([2020.0, 2021.0, 2023.0, 2024.0]))],
+        ),
+        (NUM, "UTILITY", vec![n(0.0), n(1.0)]),
+        (NUM, "MARGINAL", vec![n(1.0), n(21.0)]),
+        (VALUE, "WELFARE", vec![column(numbers([1.0, 2.0])), row(numbers([0.0, 1.0])), n(0.01), n(1.0)]),
+        (
+            VALUE,
+            "WELFARE",
+            vec![Range::new(2, 2, numbers([1.0; 4])), Range::new(2, 2, numbers([1.0; 4])), n(0.01), n(1.0)],
+        ),
+        (NUM, "COMPENSATION", vec![n(4.0), n(4.0), n(4.0), n(1.0), n(0.25), n(2.0)]),
+        (NUM, "EXACT", vec![n(-4.0), n(4.0), n(1.0), n(4.0), n(2.0)]),
+        (NUM, "EQUIVALENT", vec![row(numbers([1.0, 4.0])), row(numbers([0.5, 0.6])), n(1.0)]),
         (VALUE, "SCHEDULE", vec![t("uk-1066")]),
         (VALUE, "SCHEDULE", vec![n(1.0)]),
     ] {
@@ -303,6 +338,142 @@ fn every_rate_of_return_one_below_the_other() {
     // A rate that only touches zero is told as not settled, not left out: (1+r)^2 - 2.2 (1+r) + 1.21.
     let touching = sheet("IRR", &[row(numbers([0.0, 1.0, 2.0])), row(numbers([100.0, -220.0, 121.0]))]);
     assert_eq!(touching.cells(), [NUM]);
+}
+
+const RAMSEY: &str = "preference 1.5%, elasticity 1, growth 2%";
+
+fn found(answer: &Range<'_>) -> Vec<f64> {
+    answer.cells().iter().map(|cell| if let Cell::Number(x) = cell { *x } else { f64::NAN }).collect()
+}
+
+/// By hand: 104 in a year are worth 100 at 4%, which is 1.5% + 1.25 x 2%, 1.5% + 1 x 2.5% and 2% + 1 x 2%.
+#[test]
+fn switching_values_of_each_parameter() {
+    let flows = || column(numbers([-100.0, 104.0]));
+    for (parameter, due) in [("rate", 0.04), ("preference", 0.02), ("ELASTICITY", 1.25), ("growth", 0.025)] {
+        let answer = sheet(
+            "SWITCH",
+            &[t(RAMSEY), t(parameter), column(numbers([2026.0, 2027.0])), flows(), n(2026.0)],
+        );
+        assert_eq!((answer.rows(), answer.columns()), (1, 1));
+        assert!((found(&answer)[0] - due).abs() < 1e-12, "{parameter}: {answer:?}");
+    }
+    // Two rates, rising; and one of them where the interval says so.
+    let years = || row(numbers([0.0, 1.0, 2.0]));
+    let two = || row(numbers([-100.0, 230.0, -132.0]));
+    let answer = found(&sheet("SWITCH", &[t("3.5%"), t("rate"), years(), two()]));
+    assert!(
+        answer.len() == 2 && (answer[0] - 0.1).abs() < 1e-12 && (answer[1] - 0.2).abs() < 1e-12,
+        "{answer:?}"
+    );
+    let high = sheet("SWITCH", &[t("3.5%"), t("rate"), years(), two(), None, None, n(0.15), n(0.5)]);
+    assert_eq!(found(&high), answer[1..]);
+    // Flows in the middle of their years, from a base at the start, stand half a year in each of the two bands.
+    let bands = || t("preference 3%, elasticity 1, growth 2% to 1, 4% after");
+    let flows = || row(numbers([-100.0, 100.0 * (1.03f64 * 1.05).sqrt()]));
+    let years = || row(numbers([2026.0, 2027.0]));
+    let middle = t("flows middle, base start");
+    let given = [bands(), t("preference"), years(), flows(), n(2026.0), middle];
+    assert!((found(&sheet("SWITCH", &given))[0] - 0.01).abs() < 1e-12);
+    let at_the_end = found(&sheet("SWITCH", &[bands(), t("preference"), years(), flows(), n(2026.0)]));
+    assert!((at_the_end[0] - ((1.03f64 * 1.05).sqrt() - 1.02)).abs() < 1e-12, "{at_the_end:?}");
+    // By hand: 120 - 100 = 20 is 0 when costs rise by a fifth or benefits fall by a sixth.
+    let multipliers = sheet("MULTIPLIER", &[n(20.0), row(numbers([-100.0, 120.0]))]);
+    assert_eq!(multipliers.cells()[0], x(1.2));
+    assert!((found(&multipliers)[1] - 5.0 / 6.0).abs() < 1e-15);
+}
+
+/// By hand: 102 in a year less 99 are worth 1 at 2% and 102/1.04 - 99 at 4%.
+#[test]
+fn draws_give_a_row_for_each_option() {
+    let growth = || t("0.25 at 1%, 0.75 at 3%");
+    let (better, worse) = (1.0, 102.0 / 1.04 - 99.0);
+    let flows = || Range::new(2, 2, numbers([-99.0, 102.0, 0.0, 0.0]));
+    let years = || row(numbers([2026.0, 2027.0]));
+    let answer = sheet("DRAWS", &[n(0.01), n(1.0), growth(), years(), flows(), n(2026.0)]);
+    assert_eq!((answer.rows(), answer.columns()), (2, 9));
+    let all_cells = answer.cells().to_vec();
+    let all = found(&answer);
+    let (first, second) = all.split_at(9);
+    // Share above 0 and first place are the quarter of draws at 2%, within four standard errors.
+    let error = 4.0 * (0.25f64 * 0.75 / 10_000.0).sqrt();
+    assert!((first[2] - 0.25).abs() < error && first[2] == first[3], "{first:?}");
+    let mean = first[2] * better + (1.0 - first[2]) * worse;
+    assert!((first[0] - mean).abs() < 1e-10, "{first:?}");
+    // The percentiles 5 to 75 and 95.
+    for (i, due) in [worse, worse, worse, better, better].into_iter().enumerate() {
+        let unsure = i == 3 && (first[2] - 0.25).abs() < 0.01;
+        assert!(unsure || (first[4 + i] - due).abs() < 1e-12, "{i}: {first:?}");
+    }
+    assert_eq!((second[0], second[1], second[2]), (0.0, 0.0, 0.0));
+    assert!((first[3] + second[3] - 1.0).abs() < 1e-15);
+
+    // Years down a column give a column for each option, of the percentiles asked for; the seed counts.
+    let given = |seed: Given| {
+        let flows = Range::new(2, 2, numbers([-99.0, 0.0, 102.0, 0.0]));
+        let years = column(numbers([0.0, 1.0]));
+        [n(0.01), n(1.0), growth(), years, flows, None, None, t("0%"), row(numbers([50.0])), n(400.0), seed]
+    };
+    let answer = sheet("DRAWS", &given(n(1.0)));
+    assert_eq!((answer.rows(), answer.columns()), (5, 2));
+    assert_eq!(answer, sheet("DRAWS", &given(None)));
+    assert_ne!(answer, sheet("DRAWS", &given(n(2.0))));
+    // So they do for one option.
+    let one = [n(0.01), n(1.0), growth(), column(numbers([0.0, 1.0])), column(numbers([-99.0, 102.0]))];
+    let one = sheet("DRAWS", &one);
+    assert_eq!((one.rows(), one.columns(), &one.cells()[0]), (9, 1, &all_cells[0]));
+    // Nothing is uncertain: every draw has the one value.
+    let sure = found(&sheet(
+        "DRAWS",
+        &[n(0.01), t("1"), n(0.03), row(numbers([0.0, 1.0])), row(numbers([-99.0, 102.0]))],
+    ));
+    assert!((sure[0] - worse).abs() < 1e-12 && sure[1] < 1e-12 && sure[2..4] == [0.0, 1.0], "{sure:?}");
+}
+
+/// By hand, at numbers that give short fractions.
+#[test]
+fn hazards_growth_and_welfare() {
+    assert_eq!(cell("HAZARD", &[n(0.2)]), x(0.25));
+    assert_eq!(sheet("WAITING", &[row(numbers([101.0, 2.0]))]).cells(), numbers([0.01, 1.0]));
+    assert_eq!(cell("WAITING", &[n(100.0), t(" Continuous")]), x(0.01));
+    // Both brackets are proportional taxes, whose elasticity is 1.
+    let taxes = || row(numbers([0.3, 0.2]));
+    assert_eq!(cell("BRACKETS", &[taxes(), taxes(), row(numbers([3.0, 1.0]))]), x(1.0));
+
+    let answer = sheet(
+        "GROWTH",
+        &[row(numbers([1.0, 2.0, 4.0, 8.0])), row(numbers([2020.0, 2021.0, 2022.0, 2023.0]))],
+    );
+    assert_eq!((answer.rows(), answer.columns()), (6, 2));
+    let log = std::f64::consts::LN_2;
+    let (all, blank) = (answer.cells(), || text(""));
+    assert_eq!(all[..4], [x(1.0), blank(), x(1.0), blank()]);
+    assert_eq!((&all[4], &all[6], &all[10..]), (&x(log), &x(log), &[blank(), blank()][..]));
+    // Log growth of 1%, 3%, 2%: mean 2%, deviation 1%, persistence -1/2.
+    let series = column(numbers([0.0f64, 0.01, 0.04, 0.06].map(f64::exp)));
+    let all = found(&sheet("GROWTH", &[series]));
+    for (place, due) in [(4, 0.021), (6, 0.02), (8, 0.01), (10, -0.5)] {
+        assert!((all[place] - due).abs() < 1e-12, "{place}: {all:?}");
+    }
+
+    assert_eq!(sheet("UTILITY", &[column(numbers([4.0, 1.0])), n(2.0)]).cells(), numbers([0.75, 0.0]));
+    assert_eq!(cell("MARGINAL", &[n(4.0), n(2.0)]), x(0.0625));
+    // U(2) + U(4)/1.25 with U(c) = 1 - 1/c.
+    assert_eq!(
+        cell("WELFARE", &[row(numbers([2.0, 4.0])), row(numbers([0.0, 1.0])), n(0.25), n(2.0)]),
+        x(1.1)
+    );
+    let answer = found(&sheet("COMPENSATION", &[n(0.8), n(4.0), n(4.0), n(1.0), n(0.25), n(2.0)]));
+    assert!((answer[0] - 20.0 / 11.0).abs() < 1e-15, "{answer:?}");
+    // 1 - 1/(1 + E/4) = 0.8 x (1 - 1/1.25) = 0.16. The blank flow is 0.
+    let exact =
+        [row([x(1.0), Cell::Blank]), row(numbers([4.0, 4.0])), row(numbers([0.8, 0.5])), n(4.0), n(2.0)];
+    let answer = found(&sheet("EXACT", &exact));
+    assert!((answer[0] - 4.0 * (1.0 / 0.84 - 1.0)).abs() < 1e-15, "{answer:?}");
+    assert_eq!(
+        cell("EQUIVALENT", &[column(numbers([1.0, 4.0])), column(numbers([0.5, 0.5])), n(1.0)]),
+        x(2.0)
+    );
 }
 
 /// The line of every built-in schedule gives the schedule's factors and timing.
@@ -368,14 +539,63 @@ fn explain_says_what_is_used_or_what_is_wrong() {
     assert!(!words("EXPLAIN", &[t("2.5% to 2070, 1.5% after"), None, None, n(2026.0)]).contains("Needs"));
 }
 
-/// Each example of the table is a formula whose arguments the function takes; those without cell references work.
+/// HENCE.WHY gives the words behind an error value, of the call as a whole or of its first cell at fault.
+#[test]
+fn why_says_what_is_wrong_with_a_call() {
+    let touching = row(numbers([100.0, -220.0, 121.0]));
+    for (given, parts) in [
+        (vec![t("FACTOR"), t("3,5%"), n(1.0)], vec!["#VALUE!", "basis", "3.5%"]),
+        (
+            vec![t("hence.factor"), t("3.5% to 30"), column(numbers([1.0, 31.0]))],
+            vec!["#N/A", "offset, row 2"],
+        ),
+        (vec![t("FACTOR"), t("3.5%")], vec!["#VALUE!", "HENCE.FACTOR needs the argument offset"]),
+        (
+            vec![t("VALUE"), n(1.0), row(numbers([0.0, 1.0])), row([x(4.0), text("tbc")])],
+            vec!["#VALUE!", "flows, column 2", "tbc"],
+        ),
+        (
+            vec![t("DRAWS"), t("normal mean 1%"), n(1.0), n(0.02), n(1.0), n(1.0)],
+            vec!["#VALUE!", "preference", "sd"],
+        ),
+        (
+            vec![t("DRAWS"), n(0.01), n(1.0), n(0.02), n(1.0), n(1.0), None, None, None, None, None, n(-1.0)],
+            vec!["#NUM!", "seed"],
+        ),
+        (
+            vec![t("SWITCH"), t("3.5%"), t("growth"), row(numbers([0.0, 1.0])), row(numbers([-1.0, 2.0]))],
+            vec!["#VALUE!", "not stated by growth", "Try:"],
+        ),
+        (vec![t("EXACT"), n(-4.0), n(4.0), n(1.0), n(4.0), n(2.0)], vec!["#NUM!", "leaves nothing"]),
+        (vec![t("GROWTH"), row(numbers([1.0, 2.0]))], vec!["#VALUE!", "at least 4"]),
+        (
+            vec![t("IRR"), row(numbers([0.0, 1.0])), row(numbers([1.0, 1.0]))],
+            vec!["#NUM!", "no rate of return"],
+        ),
+        (vec![t("IRR"), row(numbers([0.0, 1.0, 2.0])), touching], vec!["#NUM!", "settle"]),
+        (vec![t("REAL"), n(0.05), one(REF)], vec!["#REF!", "inflation"]),
+        (vec![t("REAL"), n(0.05), n(0.02), n(0.02)], vec!["#VALUE!", "at most 2"]),
+        (vec![t("WHY"), t("WHY")], vec!["no function WHY"]),
+        (vec![t("FACTORIAL"), n(1.0)], vec!["no function FACTORIAL"]),
+        (vec![one(Cell::Blank)], vec!["function"]),
+        (vec![t("FACTOR"), t("3.5%"), n(1.0), one(Cell::Blank)], vec!["nothing is wrong"]),
+        (vec![t("EXPLAIN"), t("nowhere-1")], vec!["nothing is wrong"]),
+    ] {
+        let said = words("WHY", &given);
+        for part in parts {
+            assert!(said.contains(part), "{part} in: {said}");
+        }
+    }
+}
+
+/// Arguments that suit each function, and texts in their places.
 #[test]
 fn no_function_takes_a_text_for_a_number() {
     for function in
-        FUNCTIONS.iter().filter(|function| function.name != "EXPLAIN" && function.name != "SCHEDULE")
+        FUNCTIONS.iter().filter(|function| !["EXPLAIN", "SCHEDULE", "WHY"].contains(&function.name))
     {
         let sound: Vec<Given> = match function.name {
-            "FACTOR" | "RATE" | "MEANRATE" => vec![t("3.5%"), n(2.0)],
+            "FACTOR" | "RATE" | "MEANRATE" | "INSTANT" => vec![t("3.5%"), n(2.0)],
             "VALUE" => vec![t("3.5%"), n(2.0), n(100.0)],
             "ANNUAL" => vec![t("3.5%"), n(100.0), n(3.0)],
             "IRR" => vec![row(numbers([0.0, 1.0])), row(numbers([-100.0, 107.0]))],
@@ -383,12 +603,29 @@ fn no_function_takes_a_text_for_a_number() {
             "ELASTICITY" => vec![n(0.4), n(0.25)],
             "WEIGHT" => vec![n(1.0), n(2.0), n(1.0)],
             "REAL" => vec![n(0.05), n(0.02)],
+            "SWITCH" => vec![t(RAMSEY), t("rate"), row(numbers([0.0, 1.0])), row(numbers([-100.0, 107.0]))],
+            "MULTIPLIER" => vec![n(20.0), n(-100.0)],
+            "DRAWS" => vec![t("1%"), t("1"), t("2%"), n(2.0), n(100.0)],
+            "BRACKETS" => vec![n(0.4), n(0.25), n(1.0)],
+            "HAZARD" => vec![n(0.01)],
+            "WAITING" => vec![n(100.0)],
+            "GROWTH" => vec![column(numbers([1.0, 2.0, 3.0, 4.0]))],
+            "UTILITY" | "MARGINAL" => vec![n(2.0), n(1.5)],
+            "WELFARE" => vec![n(2.0), n(1.0), n(0.01), n(1.5)],
+            "COMPENSATION" => vec![n(1.0), n(100.0), n(110.0), n(10.0), n(0.01), n(1.5)],
+            "EXACT" => vec![n(1.0), n(100.0), n(0.5), n(100.0), n(1.5)],
+            "EQUIVALENT" => vec![n(2.0), n(1.0), n(1.5)],
             other => panic!("no arguments for {other}"),
         };
         assert_eq!(sound.len(), function.required(), "{}", function.name);
-        assert!(matches!(cell(function.name, &sound), Cell::Number(_)), "{}", function.name);
-        // A basis may be a text; everything else is a number, for which `two` and `2` as texts are errors.
-        let first = usize::from(function.arguments[0].name == "basis");
+        assert!(matches!(sheet(function.name, &sound).cells()[0], Cell::Number(_)), "{}", function.name);
+        // A basis, a parameter and a distribution are texts; everything else is a number, for which `two` and `2` as
+        // texts are errors.
+        let first = match function.name {
+            "SWITCH" => 2,
+            "DRAWS" => 3,
+            _ => usize::from(function.arguments[0].name == "basis"),
+        };
         for i in first..sound.len() {
             for wrong in ["two", "2"] {
                 let mut arguments = sound.clone();

@@ -7,6 +7,7 @@ mod flood_wall;
 #[allow(dead_code)] // parts of it serve the other tests of the C interface
 mod library;
 mod sample;
+mod two_walls;
 
 use std::io::Write;
 use std::path::{Path, PathBuf};
@@ -127,6 +128,63 @@ fn numpy_arrays_are_not_copied() {
     let output = sample.shell(&format!("{LIBRARY_PATH}'{}' -c", python.display()), &[script], &[]);
     let said = String::from_utf8_lossy(&output.stderr);
     assert_eq!(String::from_utf8_lossy(&output.stdout), "808 False\nfloat64\n", "{said}");
+}
+
+/// What hence.py offers beyond the samples, by the bits of each number; they are those of the layer for C++.
+#[test]
+fn python_layer() {
+    let Some((python, version)) = python_with_numpy() else { return };
+    let script = "import sys\n\
+        sys.path.insert(0, 'samples/python')\n\
+        import hence, numpy as np\n\
+        show = lambda x: print(f'{np.float64(x).view(np.uint64):016x}')\n\
+        four, shares = [2, 2.5, 2.25, 3], [0.4, 0.3, 0.2, 0.1]\n\
+        show(hence.elasticity_from_brackets(shares, shares, four))\n\
+        show(hence.hazard_from_probability(0.01, hence.CONTINUOUS))\n\
+        growth = hence.growth(four, [2020, 2021, 2022, 2023])\n\
+        for x in growth.mean_growth, growth.persistence, growth.persistence_error: show(x)\n\
+        show(hence.utility(2.5, 1.5))\n\
+        show(hence.marginal_utility(2.5, 1.5))\n\
+        show(hence.welfare(four, range(4), 0.01, 1.5))\n\
+        show(hence.compensation(0.5, 2, 3, 10, 0.01, 1.5))\n\
+        show(hence.compensating_variation(shares, four, shares, 2, 0.4, 1.5))\n\
+        show(hence.equally_distributed_equivalent(four, shares, 1.5))\n\
+        show(hence.switching_multiplier(20, -100))\n\
+        with hence.Basis('3.5%') as basis:\n\
+        \tshow(basis.instantaneous_rates([7.0])[0])\n\
+        \tflows = np.poly([1 + 0.05 * k for k in range(1, 10)])\n\
+        \tprint(basis.switching_values(hence.RATE, np.arange(10.0), flows, 0, 1).size)";
+    let sample = Sample::new("samples/python/flood_wall.py");
+    let output = sample.shell(&format!("{LIBRARY_PATH}'{}' -c", python.display()), &[script], &[]);
+    let said = library::said(&output);
+    let layer = flood_wall::layer().expect("a text");
+    // Behind the first numbers, which the layer for Python does not offer, and the rates of a curve.
+    let shared: Vec<&str> = layer.lines().skip(15).take(12).collect();
+    let flat = hence_core::RateLine::parse("3.5%").and_then(|line| line.spec().curve(&Default::default()));
+    let rate = flat.and_then(|curve| curve.instantaneous_rate(7.0)).expect("a rate");
+    assert_eq!(said, format!("{}\n{:016x}\n9\n", shared.join("\n"), rate.to_bits()));
+    ran("Python (hence.py)", &version);
+}
+
+/// The program that weighs two walls, in the languages whose layers offer what it calls.
+#[test]
+fn two_walls() {
+    let expected = two_walls::text().expect("a text");
+    for (language, compiler, program) in
+        [("C", "cc", "samples/c/two_walls.c"), ("C++", "c++", "samples/cpp/two_walls.cpp")]
+    {
+        let Some(version) = version(language, compiler, &["--version"]) else { continue };
+        let sample = Sample::new(program);
+        sample.build(&[]);
+        sample.check_alone("", &expected);
+        ran(&format!("{language} (two walls)"), &version);
+    }
+    let Some((python, version)) = python_with_numpy() else { return };
+    let mut sample = Sample::new("samples/python/two_walls.py");
+    let line = sample.lines.last_mut().expect("a line that runs it");
+    *line = line.replace("python3 ", &format!("'{}' ", python.display()));
+    sample.check_alone("", &expected);
+    ran("Python (two walls)", &version);
 }
 
 #[test]

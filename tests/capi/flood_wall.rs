@@ -2,10 +2,13 @@
 
 use chrono::NaiveDate;
 
+use hence_core::Compounding::{Continuous, Yearly};
 use hence_core::{
-    Basis, Catalogue, DayCount, Error, ErrorKind, IRR_INTERVAL, Result, TimedOffset, Timing, Where,
-    annual_equivalent, elasticity_from_taxes, equity_weight, internal_rates, offset_of_dates, present_value,
-    ramsey_rate, ramsey_rate_uncertain, real_rate,
+    Basis, Catalogue, DayCount, Error, ErrorKind, IRR_INTERVAL, Result, TaxBracket, TimedOffset, Timing,
+    Where, annual_equivalent, compensating_variation, compensation, elasticity_from_tax_brackets,
+    elasticity_from_taxes, equally_distributed_equivalent, equity_weight, growth_from_consumption,
+    hazard_from_probability, internal_rates, marginal_utility, offset_of_dates, present_value, ramsey_rate,
+    ramsey_rate_uncertain, real_rate, switching_multiplier, utility, welfare,
 };
 
 const PLAN: &str = include_str!("../../samples/flood-wall.csv");
@@ -88,9 +91,34 @@ pub fn layer() -> Result<String> {
         elasticity_from_taxes(0.42, 0.29)?,
         real_rate(0.0555, 0.0203)?,
     ];
+    let mut numbers = numbers.to_vec();
+    for t in [10.0, 50.0, 90.0] {
+        numbers.push(edges.instantaneous_rate(t)?);
+    }
+    let (four, shares) = ([2.0, 2.5, 2.25, 3.0], [0.4, 0.3, 0.2, 0.1]);
+    let brackets: Vec<TaxBracket> = (shares.iter().zip(four))
+        .map(|(rate, weight)| TaxBracket { marginal: *rate, average: *rate, weight })
+        .collect();
+    let growth = growth_from_consumption(&four, None)?;
+    let persistence = growth.persistence.expect("growth that varies");
+    numbers.extend([
+        elasticity_from_tax_brackets(&brackets)?,
+        hazard_from_probability(0.01, Continuous)?,
+        growth.geometric_mean,
+        persistence.value,
+        persistence.error,
+        utility(2.5, 1.5)?,
+        marginal_utility(2.5, 1.5)?,
+        welfare(&four, &[0.0, 1.0, 2.0, 3.0], 0.01, 1.5, Yearly)?,
+        compensation(0.5, 2.0, 3.0, 10.0, 0.01, 1.5, Yearly)?,
+        compensating_variation(&shares, &four, &shares, 2.0, 0.4, 1.5)?,
+        equally_distributed_equivalent(&four, &shares, 1.5)?,
+        switching_multiplier(20.0, -100.0)?.expect("a stream that counts"),
+    ]);
     let bits: Vec<String> = numbers.iter().map(|x| format!("{:016x}", x.to_bits())).collect();
     let line = catalogue.get("uk-2003").expect("a schedule").line()?;
-    Ok(format!("{}\n{line}\nHENCE_ERR_NULL, argument 1\n", bits.join("\n")))
+    let slips = "HENCE_ERR_SYNTAX, argument 2, index 2\n9";
+    Ok(format!("{}\n{slips}\n{line}\nHENCE_ERR_NULL, argument 1\n", bits.join("\n")))
 }
 
 /// The plan is such that the samples show what they are there to show.

@@ -36,6 +36,12 @@ fn constants() -> Vec<(&'static str, i64)> {
         HENCE_CELL_BLANK,
         HENCE_CELL_LOGICAL,
         HENCE_CELL_ERROR,
+        HENCE_COMPOUNDING_YEARLY,
+        HENCE_COMPOUNDING_CONTINUOUS,
+        HENCE_PARAMETER_RATE,
+        HENCE_PARAMETER_PREFERENCE,
+        HENCE_PARAMETER_ELASTICITY,
+        HENCE_PARAMETER_GROWTH,
     ]
 }
 
@@ -54,6 +60,8 @@ fn c_and_rust_see_one_layout() {
     }
     layout!(hence_error: struct_size, code, argument, index, message);
     layout!(hence_range: struct_size, rows, columns, numbers, kinds, texts);
+    layout!(hence_growth: struct_size, has_persistence, trend, trend_error, mean, mean_error, trend_growth, mean_growth, sd, sd_error, persistence, persistence_error);
+    layout!(hence_spread: struct_size, mean, mean_error, sd, lowest, highest, positive, positive_error);
     due.push(format!("abi {HENCE_ABI_VERSION}"));
     assert_eq!(printed.lines().collect::<Vec<_>>(), due);
 }

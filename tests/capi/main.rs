@@ -11,3 +11,4 @@ mod readme;
 mod reference;
 mod symbols;
 mod threads;
+mod welfare;

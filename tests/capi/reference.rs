@@ -49,6 +49,9 @@ impl Both {
         let mut factors = vec![0.0; offsets.len()];
         self.rust.factors(offsets, &mut factors).unwrap();
         equal(&factors, &self.c.factors(offsets));
+        let instantaneous: Vec<f64> =
+            offsets.iter().map(|t| self.rust.instantaneous_rate(*t).unwrap()).collect();
+        equal(&instantaneous, &self.c.instantaneous_rates(offsets));
         let years: Vec<f64> = offsets.iter().copied().filter(|t| *t >= 1.0).collect();
         let each = |f: &dyn Fn(f64) -> hence_core::Result<f64>| -> Vec<f64> {
             years.iter().map(|t| f(*t).unwrap()).collect()

@@ -127,4 +127,13 @@ impl Sample {
         let said = String::from_utf8_lossy(&output.stderr);
         assert!(said.contains(&expected), "{line} 3,5%: expected {expected}, found {said}");
     }
+
+    /// Runs a program that takes no arguments, and compares.
+    pub fn check_alone(&self, before: &str, expected: &str) {
+        let line = self.run_line(before);
+        let output = self.shell(&line, &[], &[]);
+        let said = String::from_utf8_lossy(&output.stderr);
+        assert!(output.status.success(), "{line}: {}\n{said}", output.status);
+        assert_eq!(String::from_utf8_lossy(&output.stdout), expected, "{line}");
+    }
 }

@@ -1,6 +1,6 @@
 //! `hence check`: what a workbook holds against what its basis gives.
 
-use crate::books::{Book, SHEET, plan, with};
+use crate::books::{Book, SHEET, holds, plan, with};
 use crate::{code, run, stderr, stdout};
 use hence_workbook::package::Package;
 
@@ -90,4 +90,33 @@ fn what_cannot_be_checked_says_why() {
     let document: serde_json::Value = serde_json::from_str(&stdout(&output)).unwrap();
     assert_eq!(document["books"][0]["status"], "failed");
     assert!(stderr(&output).contains("Appraisal!B4 [hence_basis]"), "{}", stderr(&output));
+}
+
+#[test]
+fn a_marked_copy_holds_the_findings() {
+    let book = changed(&[("C28", "0.97")]);
+    let out = book.beside_arg("marked.xlsx");
+    let output = run(&["check", book.arg(), "--out", &out]);
+    assert_eq!(code(&output), 1, "{}", stderr(&output));
+    assert!(stdout(&output).contains("-> "), "{}", stdout(&output));
+    assert!(holds(&book.beside("marked.xlsx"), "hence check: a typed number in a row of formulas"));
+    book.is_clean(&["marked.xlsx"]);
+    // What is there is kept, unless told otherwise; the input is never written.
+    assert_ne!(code(&run(&["check", book.arg(), "--out", &out])), 0);
+    assert_eq!(code(&run(&["check", book.arg(), "--out", &out, "--force"])), 1);
+    let same = run(&["check", book.arg(), "--out", book.arg(), "--force"]);
+    assert!(stderr(&same).contains("output-is-input"), "{}", stderr(&same));
+    book.is_clean(&["marked.xlsx"]);
+}
+
+#[test]
+fn a_marked_copy_is_of_one_workbook_and_a_workbook() {
+    let book = filled();
+    let other = filled();
+    let out = book.beside_arg("marked.xlsx");
+    let output = run(&["check", book.arg(), other.arg(), "--out", &out]);
+    assert_eq!(code(&output), 2);
+    assert!(stderr(&output).contains("one file"), "{}", stderr(&output));
+    let text = book.beside_arg("marked.txt");
+    assert_eq!(code(&run(&["check", book.arg(), "--out", &text])), 2);
 }

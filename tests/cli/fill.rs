@@ -79,8 +79,13 @@ fn the_prices_of_the_flows_are_reported() {
     );
     let output = run(&[&["fill", book.arg(), "--force"], &roles[..]].concat());
     assert!(stdout(&output).contains(&format!("Prices  {words}\n")), "{}", stdout(&output));
-    // Where nothing is said of prices, nothing is reported.
+    // A started workbook says that its prices are real.
     let output = run(&["fill", book.arg(), "--force"]);
+    assert!(stdout(&output).contains("Prices  real"), "{}", stdout(&output));
+    // Where nothing is said of prices, nothing is reported.
+    let (_folder, sample) = copy_of("mine-drainage.xlsx");
+    let output = run(&["fill", sample.to_str().unwrap()]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
     assert!(!stdout(&output).contains("Prices"), "{}", stdout(&output));
 }
 
@@ -149,7 +154,7 @@ fn json_has_the_documented_shape_and_the_right_numbers() {
     assert_eq!(found["output"], book.beside_arg("plan.audited.xlsx"));
     assert_eq!(found["status"], "done");
     let option = &found["options"][0];
-    assert_eq!(keys(option), "annual npv option pv_benefits pv_costs ratio");
+    assert_eq!(keys(option), "annual npv option prices pv_benefits pv_costs ratio");
     assert_eq!(option["option"], "Appraisal", "a workbook without options has one, named after its sheet");
     let (benefits, costs) = by_hand(0.035);
     let annuity: f64 = (1..=60).map(|n| 1.035f64.powi(-n)).sum();

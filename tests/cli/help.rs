@@ -2,8 +2,8 @@
 
 use crate::{code, run, stdout};
 
-const COMMANDS: [&str; 10] =
-    ["fill", "check", "compare", "brief", "curve", "draws", "rate", "schedules", "names", "start"];
+const COMMANDS: [&str; 11] =
+    ["fill", "check", "compare", "brief", "curve", "draws", "rate", "schedules", "names", "plan", "start"];
 
 #[test]
 fn help_lists_every_command_and_the_exit_codes() {

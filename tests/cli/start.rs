@@ -2,6 +2,7 @@
 
 use crate::books::{Book, cell, plan, typed};
 use crate::{code, run, stderr, stdout};
+use hence_workbook::reading::Value;
 use hence_workbook::start::start;
 
 #[test]
@@ -75,4 +76,21 @@ fn costs_alone_can_be_filled() {
     let output = run(&["fill", book.arg()]);
     assert_eq!(code(&output), 0, "{}", stderr(&output));
     assert!(stderr(&output).contains("[hence_benefits]: holds no numbers"), "{}", stderr(&output));
+}
+
+/// The workbook says which prices it holds, so that schedules of real rates have nothing to warn of, and nominal ones refuse.
+#[test]
+fn it_says_which_prices_it_holds() {
+    let stated = |basis: &str, prices: &[(&str, &str)]| {
+        let book = plan(&[&[("B4", basis)], prices].concat());
+        let output = run(&["fill", book.arg()]);
+        (code(&output), stderr(&output))
+    };
+    let (ended, said) = stated("uk-2026", &[]);
+    assert!(ended == 0 && !said.contains("prices"), "{said}");
+    let (ended, said) = stated("us-a94c-2000-nominal", &[]);
+    assert!(ended == 1 && said.contains("(prices-differ)"), "{said}");
+    let (ended, said) = stated("us-a94c-2000-nominal", &[("B6", "nominal")]);
+    assert!(ended == 0 && !said.contains("prices"), "{said}");
+    assert_eq!(cell(&plan(&[]).path, "Appraisal", "A6").value, Value::Text("Prices".into()));
 }

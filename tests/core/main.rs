@@ -17,6 +17,7 @@ mod schedule_factors;
 mod schedules;
 mod sums;
 mod switching;
+mod switching_states;
 mod tails;
 mod timing;
 mod welfare;

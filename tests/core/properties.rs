@@ -1,6 +1,8 @@
 //! Properties that hold for every curve.
 
-use hence_core::{Band, Compounding, Curve, Edge, ErrorKind, HorizonRule, Spec, Timing, Where};
+use hence_core::{
+    Band, Compounding, Curve, Edge, ErrorKind, HorizonRule, Spec, Timing, Where, dot, present_value,
+};
 use proptest::prelude::*;
 
 fn made(spec: &Spec) -> Curve {
@@ -58,6 +60,89 @@ fn any_spec() -> impl Strategy<Value = Spec> {
         4 => simple(),
         1 => (simple(), simple(), 0.0..1.0f64).prop_map(|(a, b, w)| Spec::Mixture(vec![(w, a), (1.0 - w, b)])),
     ]
+}
+
+/// Enough offsets that whole years are looked up in a table: in order, by 300 again and again, shuffled, with fractions
+/// among them, and so far out that factors are 0.
+fn many_offsets() -> Vec<Vec<f64>> {
+    let years = |n: usize| (0..n).map(|year| year as f64).collect::<Vec<f64>>();
+    let mut mixed: Vec<f64> = (0..6000).map(|i| ((i * 7919) % 1024) as f64).collect();
+    for (place, t) in
+        [(3000, 0.5), (3001, -0.0), (4000, 1023.0), (4500, 1023.5), (4501, 1024.0), (5999, 40_000.0)]
+    {
+        mixed[place] = t;
+    }
+    let again = (0..6000).map(|i| (i % 300) as f64).collect();
+    let later = (0..6000).map(|i| (i % 300) as f64 + 0.25).collect();
+    vec![years(40_000), again, mixed, later, years(100)]
+}
+
+#[test]
+fn many_factors_are_their_scalars() {
+    let to = |edge| Some(Edge::Offset(edge));
+    let bands = vec![Band { value: 0.035, to: to(30.0) }, Band { value: 0.03, to: to(75.5) }];
+    let after = |rate| Spec::Bands {
+        bands: [bands.clone(), vec![Band { value: rate, to: None }]].concat(),
+        edges_from: None,
+    };
+    let flat = |rate| Spec::Flat { rate, compounding: Compounding::Yearly };
+    for spec in [
+        flat(0.035),
+        flat(0.0),
+        flat(1.0),
+        after(0.01),
+        after(0.0),
+        Spec::Gamma { mean: 0.04, sd: 0.03 },
+        Spec::Mixture(vec![(0.5, flat(0.01)), (0.5, flat(0.07))]),
+    ] {
+        let curve = made(&spec);
+        for offsets in many_offsets() {
+            let mut factors = vec![f64::NAN; offsets.len()];
+            curve.factors(&offsets, &mut factors).unwrap();
+            for (&t, factor) in offsets.iter().zip(&factors) {
+                assert_eq!(factor.to_bits(), curve.factor(t).unwrap().to_bits(), "{spec:?} at {t}");
+            }
+            // So a present value is the sum over those factors, in any order of the flows.
+            let flows: Vec<f64> =
+                (0..offsets.len()).map(|i| (i as f64 * 0.618).fract() * 100.0 - 30.0).collect();
+            let value = present_value(&curve, &offsets, &flows).unwrap();
+            assert_eq!(value.to_bits(), dot(&factors, &flows).to_bits(), "{spec:?}");
+            let back = |values: &[f64]| values.iter().rev().copied().collect::<Vec<f64>>();
+            let other = present_value(&curve, &back(&offsets), &back(&flows)).unwrap();
+            assert_eq!(value.to_bits(), other.to_bits(), "{spec:?}");
+        }
+    }
+}
+
+#[test]
+fn one_bad_number_among_many_is_found() {
+    let spec = Spec::Table(vec![(0.0, 1.0), (2000.0, 1e-6)]);
+    let falling = Spec::Flat { rate: 1.0, compounding: Compounding::Yearly };
+    let years: Vec<f64> = (0..10_000).map(|i| (i % 300) as f64).collect();
+    let far: Vec<f64> = (0..10_000).map(|i| f64::from(i) + 5000.0).collect();
+    let flows = vec![1.0; years.len()];
+    for (spec, years) in [(&spec, &years), (&falling, &years), (&falling, &far)] {
+        let curve = made(spec);
+        for place in [0, 31, 5000, 9999] {
+            for bad in [f64::NAN, f64::INFINITY] {
+                let (mut offsets, mut amounts) = (years.clone(), flows.clone());
+                offsets[place] = bad;
+                let error = present_value(&curve, &offsets, &flows).unwrap_err();
+                assert_eq!((error.kind(), error.index()), (ErrorKind::NotFinite, Some(place)));
+                let mut factors = vec![7.0; offsets.len()];
+                let error = curve.factors(&offsets, &mut factors).unwrap_err();
+                assert_eq!((error.kind(), error.index()), (ErrorKind::NotFinite, Some(place)));
+                assert!(factors.iter().all(|&factor| factor == 7.0));
+                amounts[place] = bad;
+                let error = present_value(&curve, years, &amounts).unwrap_err();
+                assert_eq!((error.kind(), error.index()), (ErrorKind::NotFinite, Some(place)));
+            }
+        }
+    }
+    let mut offsets = years.clone();
+    offsets[7777] = 2001.0;
+    let error = present_value(&made(&spec), &offsets, &flows).unwrap_err();
+    assert_eq!((error.kind(), error.index()), (ErrorKind::OutsideDomain, Some(7777)));
 }
 
 proptest! {

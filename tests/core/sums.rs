@@ -60,6 +60,40 @@ fn products_of_unequal_lengths_panic() {
     dot(&[1.0], &[1.0, 2.0]);
 }
 
+/// Terms one after the other through the long register alone.
+fn registered(terms: &[f64], factors: &[f64]) -> (f64, f64) {
+    let (mut sums, mut products) = (ExactSum::new(), ExactSum::new());
+    for (&term, &factor) in terms.iter().zip(factors) {
+        sums.add(term);
+        products.add_product(term, factor);
+    }
+    (sums.total(), products.total())
+}
+
+#[test]
+fn long_arrays_are_rounded_once_too() {
+    let half_unit = 2f64.powi(-53);
+    let cancelling = |n: usize| (0..n).flat_map(|i| [1e9 + i as f64 / 7.0, -(1e9 + i as f64 / 7.0)]);
+    for n in [5, 8, 16, 100, 1000] {
+        for rest in [0.0, 1e-300, -1e-300, 1e-12, half_unit] {
+            // Half way between two doubles, or just beside: the least term decides.
+            let mut terms = vec![1.0, half_unit];
+            terms.extend(cancelling(n));
+            terms.push(rest);
+            let due = if rest > 0.0 { 1.0 + 2.0 * half_unit } else { 1.0 };
+            let due = if rest == 1e-12 { 1.0 + (1e-12 + half_unit) } else { due };
+            assert_eq!(sum(&terms), due, "{n} pairs and {rest:e}");
+            assert_eq!(dot(&terms, &vec![1.0; terms.len()]), due, "{n} pairs and {rest:e}");
+        }
+        let all: Vec<f64> = cancelling(n).collect();
+        assert_eq!((sum(&all), dot(&all, &vec![0.1; all.len()])), (0.0, 0.0));
+    }
+    let large = vec![1e300; 50];
+    assert_eq!(dot(&large, &large), f64::INFINITY);
+    let tiny = vec![1e-160; 50];
+    assert_eq!(dot(&tiny, &tiny), registered(&tiny, &tiny).1);
+}
+
 /// The exact sum through arbitrary precision; terms are within 2^120 of each other.
 fn exact(terms: impl Iterator<Item = Big>) -> f64 {
     terms.fold(big(0.0), |sum, term| sum + term).to_f64().value()
@@ -81,6 +115,19 @@ proptest! {
     fn the_sum_of_products_is_the_exact_one_rounded(pairs in prop::collection::vec((term(), term()), 0..60)) {
         let (a, b): (Vec<f64>, Vec<f64>) = pairs.iter().copied().unzip();
         prop_assert_eq!(dot(&a, &b), exact(pairs.iter().map(|&(x, y)| big(x) * big(y))));
+    }
+
+    #[test]
+    fn the_quick_way_and_the_register_agree(
+        pairs in prop::collection::vec((term(), term()), 0..400),
+        cancel in any::<bool>(),
+    ) {
+        let (mut a, mut b): (Vec<f64>, Vec<f64>) = pairs.into_iter().unzip();
+        if cancel {
+            let rest: Vec<f64> = a.iter().map(|term| -term * (1.0 + f64::EPSILON)).collect();
+            (a, b) = ([a, rest].concat(), [b.clone(), b].concat());
+        }
+        prop_assert_eq!((sum(&a), dot(&a, &b)), registered(&a, &b));
     }
 
     #[test]

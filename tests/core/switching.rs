@@ -264,8 +264,6 @@ fn a_schedule_of_states_has_a_preference() {
     assert_eq!(found.values.len(), 1, "{found:?}");
     let curve = Preference.at(&regimes, found.values[0]).unwrap().curve(&NO_BASE).unwrap();
     assert!(worth(&curve, &offsets, &flows).abs() < 1e-11);
-    let error = switching_values(&net, &regimes, &NO_BASE, Elasticity, (0.0, 20.0)).unwrap_err();
-    assert_eq!((error.kind(), error.argument()), (ErrorKind::Unsupported, "parameter"));
 }
 
 #[test]

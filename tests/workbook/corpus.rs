@@ -18,6 +18,7 @@ use hence_core::Catalogue;
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::package::Package;
 use hence_workbook::problem::{Result, Severity};
+use hence_workbook::shelf::record_of;
 
 use crate::tools;
 use appraisal::{Prepared, in_a_sheet, on_a_sheet};
@@ -59,6 +60,10 @@ fn try_one(file: &Path, prepare: Prepare) -> Result<Option<(Vec<u8>, Counts)>> {
     let request = FillRequest { roles: prepared.roles.clone(), ..FillRequest::default() };
     let filled = fill(&prepared.package, &request, &Catalogue::builtin())?;
     let mut counts = compare(&original, &prepared, &filled.bytes);
+    // Entries of other programs, with descriptors and odd flags, come back byte for byte without the record and with it.
+    if record_of(&Package::from_bytes(original.file_name(), filled.bytes.clone())?).is_none() {
+        counts.faults.push("the record of the output does not match it".to_owned());
+    }
     // An output is a workbook like any other: filled again, it takes the place of the first.
     if prepared.existing {
         let again = Package::from_bytes(original.file_name(), filled.bytes.clone())?;
@@ -72,6 +77,15 @@ fn try_one(file: &Path, prepare: Prepare) -> Result<Option<(Vec<u8>, Counts)>> {
         counts.faults.extend(recounted.faults.into_iter().map(|fault| format!("second fill: {fault}")));
     }
     Ok(Some((filled.bytes, counts)))
+}
+
+/// A file with an appraisal in it, on a sheet of its own and on one of its sheets, and the roles; for other tests.
+pub fn prepared(file: &Path) -> Vec<(Package, Vec<(String, String)>)> {
+    let Ok(original) = Package::open(file) else { return Vec::new() };
+    let made = [on_a_sheet as Prepare, in_a_sheet]
+        .into_iter()
+        .filter_map(|prepare| prepare(&original).ok().flatten());
+    made.map(|prepared| (prepared.package, prepared.roles)).collect()
 }
 
 fn try_all(files: &[PathBuf], folder: &Path, refused: &[Refusal]) -> (Vec<Row>, Vec<String>) {

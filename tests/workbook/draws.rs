@@ -30,7 +30,7 @@ fn prepared(small: &Small) -> Prepared {
         parsed(Quantity::Elasticity, "1"),
         parsed(Quantity::Growth, "0%"),
     ];
-    let request = DrawsRequest { distributions, roles: Vec::new() };
+    let request = DrawsRequest { distributions, ..DrawsRequest::default() };
     prepare(&small.open().0, &request, &Catalogue::builtin()).unwrap_or_else(|error| panic!("{error}"))
 }
 

@@ -11,7 +11,7 @@ use std::path::Path;
 use std::sync::OnceLock;
 
 use hence_core::Catalogue;
-use hence_workbook::check::check;
+use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::package::Package;
 use hence_workbook::patch::{Cached, CellWrite};
@@ -123,7 +123,7 @@ fn output(name: &str) -> &'static [u8] {
 
 /// What `hence check` says: differences, or the problems that keep it from valuing; nothing where all agrees.
 pub fn found(bytes: &[u8]) -> Vec<String> {
-    match check(&package(bytes), &[], &catalogue()) {
+    match check(&package(bytes), &CheckRequest::default(), &catalogue()) {
         Ok(report) if report.agrees() => Vec::new(),
         Ok(report) => report.differences.iter().map(|d| format!("{} {}", d.place, d.role)).collect(),
         Err(error) => error.problems().iter().map(ToString::to_string).collect(),

@@ -23,6 +23,12 @@ mod rules;
 use book::{Book, Wanted, book};
 use model::{Choice, Outcome, npv_at, payback};
 
+/// A random workbook and how it is filled, for other tests.
+pub fn random(seed: u64) -> (hence_workbook::package::Package, hence_workbook::fill::FillRequest) {
+    let made = book(seed);
+    (made.package(), made.request)
+}
+
 /// How many random workbooks are filled.
 const BOOKS: u64 = 240;
 

@@ -485,7 +485,7 @@ fn roles_from_the_command_line_beat_names() {
         ("npv".to_owned(), "'Plan'!$B$9".to_owned()),
         ("base".to_owned(), "Plan!B1".to_owned()),
     ];
-    let options = Options { roles: &given, basis: Some("3.5%") };
+    let options = Options { roles: &given, basis: Some("3.5%"), ..Options::default() };
     let small = Small::default().sheet("Plan", &cells("")).names("The_years B4:D4, hence_cost_works B5:D5");
     let read = small.resolve_with(&options).unwrap();
     assert_eq!(read.choices[0].streams.len(), 1);
@@ -497,7 +497,9 @@ fn roles_from_the_command_line_beat_names() {
         ("verdict", "Plan!B6", "unknown-role [--role verdict]"),
     ] {
         let given = [(role.to_owned(), range.to_owned())];
-        let Err(problems) = plan("").resolve_with(&Options { roles: &given, basis: None }) else { panic!() };
+        let Err(problems) = plan("").resolve_with(&Options { roles: &given, ..Options::default() }) else {
+            panic!()
+        };
         assert_eq!(codes(&problems), [code]);
     }
 }

@@ -180,6 +180,7 @@ pub fn appraisal(case: &Case) -> Appraisal {
         })
         .collect();
     Appraisal {
+        decide: Default::default(),
         settings: Vec::new(),
         axes: names.iter().map(|s| axis(s)).collect(),
         choices,

@@ -206,3 +206,71 @@ fn a_tail_is_named_where_it_keeps_a_row_from_being_live() {
     });
     assert!(said.count() >= 9);
 }
+
+/// Growth by bands: each value is put back band by band, live, and LibreOffice comes to the same; where every year has a
+/// rate of its own it is put back by the second route at the fill.
+#[test]
+fn values_under_a_path_of_growth_have_a_second_route() {
+    let live = [
+        "preference 0.5%, elasticity 1, growth 2% to 1, 4% after",
+        "preference 0.5%, hazard 1%, elasticity 1.5, growth 2% to 1, 1% after; exact",
+        "preference 0.5%, elasticity 1.5, growth 2% to 1, 1% after; continuous; flows middle, base start",
+        "preference 0.5%, elasticity 1.5, growth 2% sd 3%; flows averaged",
+    ];
+    let every_year = "preference 0.5%, elasticity 1.5, log growth 2% sd 3% persistence 0.5";
+    let check = |cells: &Cells, basis: &str, result: &str| {
+        let mut seen = 0;
+        for parameter in ["rate", "preference", "elasticity", "growth"] {
+            let none = Stored::Text("none".into());
+            for row in rows(cells, &["Mine", "zero", parameter]).iter().filter(|row| row[0] != none) {
+                assert!(number(&row[1]) <= number(&row[2]) && number(&row[2]) < 1e-5, "{basis}: {row:?}");
+                let due = if parameter == "rate" { "zero" } else { result };
+                assert_eq!(text(&row[3]), due, "{basis}, {parameter}");
+                seen += 1;
+            }
+        }
+        assert!(seen >= 6, "{basis}: {seen}");
+    };
+    let mut books = Vec::new();
+    for (i, basis) in live.iter().enumerate() {
+        let bytes = filled(&mine(basis).bytes(), &[]);
+        check(&cells(&bytes), basis, "zero");
+        books.push((format!("{i}.xlsx"), bytes));
+    }
+    check(&cells(&filled(&mine(every_year).bytes(), &[])), every_year, "zero at the fill");
+    // As another basis beside the declared one it is put back just so.
+    check(&cells(&filled(&mine("4%").bytes(), &[live[0]])), live[0], "zero");
+    let Some(soffice) = soffice() else { return };
+    let back = saved(&soffice, &books, Recalculate::All);
+    for (i, basis) in live.iter().enumerate() {
+        check(&cells(&back[&format!("{i}.xlsx")]), basis, "zero");
+    }
+}
+
+/// Rent of 5 a year from 2027 on, for ever, where growth persists: summed here year by year.
+#[test]
+fn flows_for_ever_are_filled_where_growth_persists() {
+    let text = "A1: 'Base | 2026\nA2: 'Basis | 'preference 1%, elasticity 2, log growth 2% sd 1% persistence 0.8\n\
+                 A3: 'Tail | 'for ever\nA4: 'Year | 2026 | 2027\nA5: 'Works | 100 | 0\nA6: 'Rent | 0 | 5\n\
+                 A9: 'Net present value";
+    let book = Small::default().sheet("Plan", text).names(
+        "hence_base B1, hence_basis B2, hence_years B4:C4, hence_tail_rent B3, hence_cost_works B5:C5, \
+         hence_benefit_rent B6:C6, hence_npv B9",
+    );
+    let (mut due, mut weight, mut log) = (-100.0, 0.0, 0.0);
+    for _ in 0..4000 {
+        weight = 1.0 + 0.8 * weight;
+        log += -0.05 + 4.0 * 0.01f64.powi(2) * weight * weight / 2.0;
+        due += 5.0 * f64::exp(log);
+    }
+    let bytes = filled(&book.bytes(), &[]);
+    assert_eq!(verdict(&bytes), VERDICT_AGREES);
+    let cells = cells(&bytes);
+    let npv = cells.iter().find(|((sheet, cell), _)| sheet == "Plan" && cell.to_string() == "B9");
+    let npv = number(&npv.expect("the cell").1.value);
+    assert!((npv - due).abs() < 1e-9, "{npv}, due {due}");
+    let found = compared(&book);
+    for entry in found.switching.iter().filter(|entry| matches!(entry.moved, Moved::Parameter(_))) {
+        assert!(!entry.values.is_empty() && entry.unresolved.is_empty() && entry.note.is_none(), "{entry:?}");
+    }
+}

@@ -138,6 +138,9 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
         input_name: "mine.xlsx".into(),
         input_sha256: "0".repeat(64),
         basis_sha256: "1".repeat(64),
+        plan: None,
+        appraisal: None,
+        request_sha256: "2".repeat(64),
         version: "0.1.0".into(),
         as_of: Some("1 April 2026".into()),
         by: None,
@@ -164,6 +167,7 @@ fn audit_of(appraisal: Appraisal, outcomes: Vec<ChoiceOutcome>, carried: &[Carri
         problems: &appraisal.problems,
         carried,
         differs: &differs,
+        siblings: &[],
     };
     let composed = compose(&input, &layout);
     Audit { appraisal, outcomes, layout, composed }
@@ -213,7 +217,7 @@ fn analyst(audit: &Audit) -> Vec<Sheet> {
                     CellWrite::Formula(text, result) => sheet.formula(row, col, Style::Exact, text, result),
                     CellWrite::Number(x) => sheet.number(row, col, Style::Exact, x),
                     CellWrite::Text(text) => sheet.text(row, col, Style::Text, text),
-                    CellWrite::DropValue => {}
+                    CellWrite::DropValue | CellWrite::Result(_) => {}
                 }
             }
         }
@@ -237,6 +241,7 @@ fn unevaluated(sheets: &[Sheet]) -> Vec<Sheet> {
                 Content::Text(text) => out.text(row, col, Style::Text, text),
                 Content::Number(x) => out.number(row, col, Style::Exact, *x),
                 Content::Formula(text, _) => out.formula(row, col, Style::Exact, text, Cached::None),
+                Content::Logical(truth) => out.logical(row, col, Style::Exact, *truth),
             }
         }
         out

@@ -36,6 +36,10 @@ Public Const HENCE_CELL_LOGICAL As Long = 3
 Public Const HENCE_CELL_ERROR As Long = 4
 ' The longest array accepted, in elements.
 Public Const HENCE_LENGTH_MAX As Long = 1073741824
+' Yearly compounding: a year of waiting divides by 1 + rate.
+Public Const HENCE_COMPOUNDING_YEARLY As Long = 0
+' Continuous compounding: a year of waiting multiplies by exp(-rate).
+Public Const HENCE_COMPOUNDING_CONTINUOUS As Long = 1
 ' Done.
 Public Const HENCE_OK As Long = 0
 ' A required pointer is NULL, or an array is NULL with a length above 0.
@@ -70,6 +74,14 @@ Public Const HENCE_ERR_CONTEXT As Long = 32
 Public Const HENCE_ERR_UNSUPPORTED As Long = 33
 ' A fault inside the library; nothing was written.
 Public Const HENCE_ERR_INTERNAL As Long = 90
+' A flat yearly rate in place of the basis.
+Public Const HENCE_PARAMETER_RATE As Long = 0
+' Pure time preference of a basis that states it.
+Public Const HENCE_PARAMETER_PREFERENCE As Long = 1
+' Elasticity of marginal utility of a basis that states it.
+Public Const HENCE_PARAMETER_ELASTICITY As Long = 2
+' Growth of a basis that states it; of a path that of its first band, the others moving along.
+Public Const HENCE_PARAMETER_GROWTH As Long = 3
 
 ' A range of cells that a caller hands over, row by row. One value is a range of one cell.
 Public Type hence_range
@@ -91,6 +103,36 @@ Public Type hence_error
     padding_1 As Long
     index As LongLong
     message(0 To 255) As Byte
+End Type
+
+' How values, one a draw, are spread, written into the caller's own struct.
+Public Type hence_spread
+    struct_size As Long
+    padding_1 As Long
+    mean As Double
+    mean_error As Double
+    sd As Double
+    lowest As Double
+    highest As Double
+    positive As Double
+    positive_error As Double
+End Type
+
+' What a series of consumption says of its growth, written into the caller's own struct. Every rate is a
+' fraction per year; standard errors bear the name of their figure.
+Public Type hence_growth
+    struct_size As Long
+    has_persistence As Long
+    trend As Double
+    trend_error As Double
+    mean As Double
+    mean_error As Double
+    trend_growth As Double
+    mean_growth As Double
+    sd As Double
+    sd_error As Double
+    persistence As Double
+    persistence_error As Double
 End Type
 
 ' The version of the binary interface that this library was built with.
@@ -213,12 +255,60 @@ Public Declare PtrSafe Function hence_forward_rates Lib "hence64.xll" ( _
     ByRef rates As Double, _
     ByRef failure As hence_error) As Long
 
-' Mean yearly rates to the offsets: D(t)^(-1/t) - 1, at 0 its limit, fractions per year.
+' Mean yearly rates to the offsets: D(t)^(-1/t) - 1, at 0 its limit, fractions per year. With continuous
+' compounding the mean rate is ln(1 + this).
 Public Declare PtrSafe Function hence_mean_rates Lib "hence64.xll" ( _
     ByVal basis As LongPtr, _
     ByRef offsets As Double, _
     ByVal n As LongPtr, _
     ByRef rates As Double, _
+    ByRef failure As hence_error) As Long
+
+' Instantaneous rates at the offsets: -D'(t)/D(t), fractions per year with continuous compounding; at an edge
+' that of the earlier band.
+Public Declare PtrSafe Function hence_instantaneous_rates Lib "hence64.xll" ( _
+    ByVal basis As LongPtr, _
+    ByRef offsets As Double, _
+    ByVal n As LongPtr, _
+    ByRef rates As Double, _
+    ByRef failure As hence_error) As Long
+
+' Net present values of options under seeded draws of the discount rate: in each draw one flat yearly rate,
+' preference + hazard + elasticity x growth, each part drawn from its own distribution.
+Public Declare PtrSafe Function hence_draws_value Lib "hence64.xll" ( _
+    ByVal preference As LongPtr, _
+    ByVal hazard As LongPtr, _
+    ByVal elasticity As LongPtr, _
+    ByVal growth As LongPtr, _
+    ByRef offsets As Double, _
+    ByRef flows As Double, _
+    ByVal rows As LongPtr, _
+    ByVal n As LongPtr, _
+    ByVal count As LongPtr, _
+    ByVal seed As LongLong, _
+    ByVal threads As Long, _
+    ByRef rates As Double, _
+    ByRef values As Double, _
+    ByRef failure As hence_error) As Long
+
+' Percentiles, mean, standard deviation and the share above 0 of values, one a draw.
+Public Declare PtrSafe Function hence_draws_spread Lib "hence64.xll" ( _
+    ByRef values As Double, _
+    ByVal n As LongPtr, _
+    ByRef percentiles As Double, _
+    ByVal count As LongPtr, _
+    ByRef found As Double, _
+    ByRef spread As hence_spread, _
+    ByRef failure As hence_error) As Long
+
+' How probable it is that each option ranks first: the share of draws in which its value is above every
+' other's.
+Public Declare PtrSafe Function hence_draws_rank Lib "hence64.xll" ( _
+    ByRef values As Double, _
+    ByVal rows As LongPtr, _
+    ByVal count As LongPtr, _
+    ByRef alone As Double, _
+    ByRef tied As Double, _
     ByRef failure As hence_error) As Long
 
 ' The Ramsey rate rho + eta g, a fraction per year.
@@ -247,6 +337,33 @@ Public Declare PtrSafe Function hence_elasticity_from_taxes Lib "hence64.xll" ( 
     ByRef elasticity As Double, _
     ByRef failure As hence_error) As Long
 
+' The elasticity of marginal utility that several brackets of a tax schedule imply: the mean of what each
+' implies by equal absolute sacrifice, as for hence_elasticity_from_taxes, weighted by taxpayers; a pure
+' number.
+Public Declare PtrSafe Function hence_elasticity_from_brackets Lib "hence64.xll" ( _
+    ByRef marginal As Double, _
+    ByRef average As Double, _
+    ByRef weights As Double, _
+    ByVal n As LongPtr, _
+    ByRef elasticity As Double, _
+    ByRef failure As hence_error) As Long
+
+' The hazard, a fraction per year, of a yearly probability p that benefits end for good: p/(1 - p) with
+' yearly compounding, -ln(1 - p) with continuous.
+Public Declare PtrSafe Function hence_hazard_from_probability Lib "hence64.xll" ( _
+    ByVal probability As Double, _
+    ByVal compounding As Long, _
+    ByRef hazard As Double, _
+    ByRef failure As hence_error) As Long
+
+' The hazard, a fraction per year, of an expected waiting time until benefits end for good: 1/(years - 1)
+' with yearly compounding, 1/years with continuous.
+Public Declare PtrSafe Function hence_hazard_from_waiting_time Lib "hence64.xll" ( _
+    ByVal years As Double, _
+    ByVal compounding As Long, _
+    ByRef hazard As Double, _
+    ByRef failure As hence_error) As Long
+
 ' The equity weight of a group: (reference / income)^elasticity, a pure number.
 Public Declare PtrSafe Function hence_equity_weight Lib "hence64.xll" ( _
     ByVal income As Double, _
@@ -260,6 +377,14 @@ Public Declare PtrSafe Function hence_real_rate Lib "hence64.xll" ( _
     ByVal nominal As Double, _
     ByVal inflation As Double, _
     ByRef rate As Double, _
+    ByRef failure As hence_error) As Long
+
+' Estimates growth of consumption from a series: trend, mean, standard deviation and persistence.
+Public Declare PtrSafe Function hence_growth_estimate Lib "hence64.xll" ( _
+    ByRef consumption As Double, _
+    ByRef years As Long, _
+    ByVal n As LongPtr, _
+    ByRef growth As hence_growth, _
     ByRef failure As hence_error) As Long
 
 ' Present value of one stream: the sum of D(offset) x flow, correctly rounded from the factors.
@@ -304,6 +429,120 @@ Public Declare PtrSafe Function hence_irr_all Lib "hence64.xll" ( _
 
 ' The name of a status, as static text: "HENCE_ERR_DOMAIN". Unknown numbers give "unknown status".
 Public Declare PtrSafe Function hence_status_name Lib "hence64.xll" (ByVal code As Long) As LongPtr
+
+' Every value of a parameter of the basis, rising, at which the net present value is zero, all else as it is.
+' For two options to swap, give the flows of one less those of the other.
+Public Declare PtrSafe Function hence_switching_values Lib "hence64.xll" ( _
+    ByVal basis As LongPtr, _
+    ByVal parameter As Long, _
+    ByRef offsets As Double, _
+    ByRef flows As Double, _
+    ByVal n As LongPtr, _
+    ByVal lowest As Double, _
+    ByVal highest As Double, _
+    ByRef values As Double, _
+    ByVal capacity As LongPtr, _
+    ByRef count As LongPtr, _
+    ByRef failure As hence_error) As Long
+
+' The multiple of one stream at which the net present value is zero: 1 - net/stream; 1 is the stream as it
+' is.
+Public Declare PtrSafe Function hence_switching_multiplier Lib "hence64.xll" ( _
+    ByVal net As Double, _
+    ByVal stream As Double, _
+    ByRef multiplier As Double, _
+    ByRef failure As hence_error) As Long
+
+' The utility of a consumption: (c^(1-eta) - 1)/(1 - eta), and ln c at an elasticity eta of 1.
+Public Declare PtrSafe Function hence_utility Lib "hence64.xll" ( _
+    ByVal consumption As Double, _
+    ByVal elasticity As Double, _
+    ByRef utility As Double, _
+    ByRef failure As hence_error) As Long
+
+' The utility of one more unit of consumption: c^-eta.
+Public Declare PtrSafe Function hence_marginal_utility Lib "hence64.xll" ( _
+    ByVal consumption As Double, _
+    ByVal elasticity As Double, _
+    ByRef utility As Double, _
+    ByRef failure As hence_error) As Long
+
+' The welfare of a path of consumption: the sum of utilities over (1 + rho)^offset with yearly compounding,
+' times exp(-rho offset) with continuous. Only which of two paths is better, and ratios of differences, have
+' a meaning.
+Public Declare PtrSafe Function hence_welfare Lib "hence64.xll" ( _
+    ByRef consumption As Double, _
+    ByRef offsets As Double, _
+    ByVal n As LongPtr, _
+    ByVal rho As Double, _
+    ByVal elasticity As Double, _
+    ByVal compounding As Long, _
+    ByRef welfare As Double, _
+    ByRef failure As hence_error) As Long
+
+' The discount factors along a path of consumption, what one small unit at each date is worth at the base:
+' (base/c)^eta over (1 + rho)^offset with yearly compounding, times exp(-rho offset) with continuous.
+Public Declare PtrSafe Function hence_welfare_factors Lib "hence64.xll" ( _
+    ByRef consumption As Double, _
+    ByRef offsets As Double, _
+    ByVal n As LongPtr, _
+    ByVal origin As Double, _
+    ByVal rho As Double, _
+    ByVal elasticity As Double, _
+    ByVal compounding As Long, _
+    ByRef factors As Double, _
+    ByRef failure As hence_error) As Long
+
+' What must be received later so that giving up an amount now leaves welfare as it was. For small amounts the
+' rate of return between the two is the Ramsey rate.
+Public Declare PtrSafe Function hence_compensation Lib "hence64.xll" ( _
+    ByVal amount As Double, _
+    ByVal now As Double, _
+    ByVal later As Double, _
+    ByVal years As Double, _
+    ByVal rho As Double, _
+    ByVal elasticity As Double, _
+    ByVal compounding As Long, _
+    ByRef received As Double, _
+    ByRef failure As hence_error) As Long
+
+' The exact value of flows that are not small against consumption: the amount at the base, without the
+' project, that changes welfare as much as they do (equivalent variation). The sum of factor x flow is its
+' limit for small flows.
+Public Declare PtrSafe Function hence_equivalent_variation Lib "hence64.xll" ( _
+    ByRef flows As Double, _
+    ByRef consumption As Double, _
+    ByRef factors As Double, _
+    ByVal n As LongPtr, _
+    ByVal origin As Double, _
+    ByVal elasticity As Double, _
+    ByRef value As Double, _
+    ByRef failure As hence_error) As Long
+
+' The most that could be paid at the base for flows that are not small against consumption: the amount which,
+' taken from those who have the project, leaves them as well off as without it (compensating variation);
+' negative for what must be received. Not above hence_equivalent_variation.
+Public Declare PtrSafe Function hence_compensating_variation Lib "hence64.xll" ( _
+    ByRef flows As Double, _
+    ByRef consumption As Double, _
+    ByRef factors As Double, _
+    ByVal n As LongPtr, _
+    ByVal origin As Double, _
+    ByVal base_flow As Double, _
+    ByVal elasticity As Double, _
+    ByRef value As Double, _
+    ByRef failure As hence_error) As Long
+
+' The consumption which, had everybody that much, would give the welfare of an unequal distribution: (sum of
+' share x c^(1-eta))^(1/(1-eta)), the geometric mean at an elasticity eta of 1. Divided by the mean it is 1
+' less Atkinson's index of inequality.
+Public Declare PtrSafe Function hence_equally_distributed_equivalent Lib "hence64.xll" ( _
+    ByRef consumption As Double, _
+    ByRef shares As Double, _
+    ByVal n As LongPtr, _
+    ByVal elasticity As Double, _
+    ByRef equivalent As Double, _
+    ByRef failure As hence_error) As Long
 
 ' Puts a text into bytes, as UTF-8 with a zero byte behind it. An unpaired surrogate becomes the replacement character.
 Public Sub HenceBytes(ByVal text As String, bytes() As Byte)

@@ -1,6 +1,8 @@
 //! The argument rules: what a cell counts as, where a number, a text or a year is due.
 
-use hence_core::parse_financial_year;
+use hence_core::{Compounding, parse_financial_year};
+
+use std::cell::RefCell;
 
 use chrono::{Days, NaiveDate};
 
@@ -11,6 +13,8 @@ use super::{Cell, Function, Range};
 pub(super) struct Arguments<'a> {
     function: &'static Function,
     given: &'a [Option<Range<'a>>],
+    /// The first fault of a cell of the answer, which shows an error value alone.
+    fault: RefCell<Option<Fault>>,
 }
 
 /// One cell of an argument, with its words for messages.
@@ -49,7 +53,7 @@ impl<'a> Arguments<'a> {
                 function.full_name()
             )));
         }
-        let arguments = Arguments { function, given };
+        let arguments = Arguments { function, given, fault: RefCell::new(None) };
         for i in 0..function.required() {
             if arguments.range(i).is_none() {
                 let name = function.arguments[i].name;
@@ -57,6 +61,24 @@ impl<'a> Arguments<'a> {
             }
         }
         Ok(arguments)
+    }
+
+    /// Those from the second one on, as they were given.
+    pub fn rest(&self) -> &'a [Option<Range<'a>>] {
+        self.given.get(1..).unwrap_or_default()
+    }
+
+    /// Keeps what is wrong with a cell of the answer, the first only.
+    pub fn note<T>(&self, result: Outcome<T>) -> Outcome<T> {
+        if let Err(fault) = &result {
+            self.fault.borrow_mut().get_or_insert_with(|| fault.clone());
+        }
+        result
+    }
+
+    /// What was kept.
+    pub fn noted(&self) -> Option<Fault> {
+        self.fault.borrow().clone()
     }
 
     /// An argument, if it is given. A single blank cell counts as an optional argument left out.
@@ -129,6 +151,29 @@ pub(super) fn text<'a>(place: Place<'a>) -> Outcome<&'a str> {
             Err(Fault::value(format!("{}: found {number}, allowed is a text", place.words())))
         }
         _ => Err(Fault::value(format!("{}: found a logical value, allowed is a text", place.words()))),
+    }
+}
+
+/// A whole number from `least` to `most`.
+pub(super) fn whole(place: Place<'_>, least: u64, most: u64) -> Outcome<u64> {
+    let found = number(place)?;
+    if found.fract() == 0.0 && (least as f64..=most as f64).contains(&found) {
+        return Ok(found as u64);
+    }
+    let words = place.words();
+    Err(Fault::number(format!("{words} is {found}, allowed are whole numbers from {least} to {most}")))
+}
+
+/// The compounding that an argument states; yearly where it is left out.
+pub(super) fn compounding(arguments: &Arguments<'_>, i: usize) -> Outcome<Compounding> {
+    let Some(place) = arguments.single(i)? else { return Ok(Compounding::Yearly) };
+    match text(place)?.to_lowercase().as_str() {
+        "yearly" => Ok(Compounding::Yearly),
+        "continuous" => Ok(Compounding::Continuous),
+        other => {
+            let words = format!("{}: found the text \"{}\"", place.words(), shortened(other));
+            Err(Fault::value(words).hint("yearly or continuous"))
+        }
     }
 }
 

@@ -1,19 +1,41 @@
-//! HENCE.EXPLAIN: the basis in words, or what is wrong, since an error value in a cell carries no message.
+//! HENCE.EXPLAIN and HENCE.WHY: the basis in words, or what is wrong, since an error value in a cell carries no message.
 
 use hence_core::{Basis, timing_sentence};
 
-use super::arguments::{Arguments, Place, Year};
+use super::arguments::{Arguments, Place, Year, text};
 use super::curve::{basis, calendar_year, context, curve};
-use super::fault::Outcome;
+use super::fault::{Fault, Outcome};
 use super::flows::{Axis, Clock, Streams, stated_timing};
-use super::functions::one_basis;
-use super::{Cell, Range};
+use super::functions::{self, one_basis};
+use super::{Cell, Function, Range};
 
 /// Always a text.
 pub(super) fn run(arguments: &Arguments<'_>) -> Range<'static> {
-    let words =
-        explained(arguments).unwrap_or_else(|fault| format!("{} - {}", fault.error.text(), fault.words));
+    let words = explained(arguments).unwrap_or_else(|fault| fault.told());
     Range::single(Cell::Text(words.into()))
+}
+
+/// What is wrong with a call of another function; always a text, which says so where nothing is.
+pub(super) fn why(arguments: &Arguments<'_>) -> Outcome<Range<'static>> {
+    let place = arguments.single(0)?.ok_or_else(|| Fault::value("the function is left out"))?;
+    let name = text(place)?;
+    let function = Function::find(name).filter(|function| function.name != "WHY");
+    let function = function.ok_or_else(|| {
+        Fault::value(format!("there is no function {name} to ask about")).hint("FACTOR, VALUE or DRAWS")
+    })?;
+    let asked = Arguments::new(function, arguments.rest());
+    let answered = asked.and_then(|asked| Ok((functions::run(function.name, &asked)?, asked.noted())));
+    let words = match answered {
+        Err(fault) | Ok((_, Some(fault))) => fault.told(),
+        Ok((answer, None)) => match answer.cells().iter().find_map(|cell| match cell {
+            Cell::Error(error) => Some(error.text()),
+            _ => None,
+        }) {
+            Some(error) => format!("{error} - the numbers do not settle what the answer is"),
+            None => "nothing is wrong".to_owned(),
+        },
+    };
+    Ok(Range::single(Cell::Text(words.into())))
 }
 
 fn explained(arguments: &Arguments<'_>) -> Outcome<String> {
@@ -55,7 +77,7 @@ fn timed(arguments: &Arguments<'_>, place: Place<'_>, basis: &Basis) -> Outcome<
         }
         None => Axis::of(arguments, 1)?,
     };
-    let clock = Clock::read(arguments, &axis, basis, 3, 4)?;
+    let clock = Clock::read(arguments, &axis, basis.timing(), 3, 4)?;
     let factors = clock.factors(basis, place, &axis)?;
     let labels: Vec<String> = axis.years.iter().map(|(_, year)| label(*year)).collect();
     let named: Vec<(&str, f64)> =

@@ -29,6 +29,11 @@ impl Fault {
         Fault { error, words: format!("{place} holds {}", error.text()) }
     }
 
+    /// The error value and the words.
+    pub fn told(&self) -> String {
+        format!("{} - {}", self.error.text(), self.words)
+    }
+
     /// With what to do about it.
     pub fn hint(mut self, hint: &str) -> Self {
         self.words = format!("{}. Try: {hint}", self.words);

@@ -1,8 +1,8 @@
 //! Years and flows: streams, their offsets from the base, and their present values.
 
-use hence_core::{Basis, DayCount, Timing, Where, dot, offset_of_dates};
+use hence_core::{Basis, DayCount, TimedOffset, Timing, Where, dot, offset_of_dates};
 
-use super::arguments::{Arguments, Place, Year, flow, is_blank, text, year};
+use super::arguments::{Arguments, Place, Year, flow, is_blank, number, text, year};
 use super::curve::{calendar_year, curve};
 use super::fault::{Fault, Outcome};
 use super::{Cell, Range};
@@ -103,6 +103,14 @@ impl Streams {
         let flows = streams.into_iter().map(read).collect();
         Ok(Streams { axis, flows, rows, columns })
     }
+
+    /// The only stream, of the argument so called.
+    pub fn only(&self, name: &str) -> Outcome<Vec<f64>> {
+        match self.flows.as_slice() {
+            [flows] => flows.clone(),
+            all => Err(Fault::value(format!("{name} hold {} streams, allowed is one", all.len()))),
+        }
+    }
 }
 
 /// When the flows stand.
@@ -118,7 +126,7 @@ impl Clock {
     pub fn read(
         arguments: &Arguments<'_>,
         axis: &Axis,
-        basis: &Basis,
+        own: Option<Timing>,
         base: usize,
         timing: usize,
     ) -> Outcome<Self> {
@@ -138,7 +146,7 @@ impl Clock {
             )
             .hint("leave timing out"));
         }
-        let timing = if dates { Timing::default() } else { stated.or(basis.timing()).unwrap_or_default() };
+        let timing = if dates { Timing::default() } else { stated.or(own).unwrap_or_default() };
         if timing != Timing::default() && years.iter().any(|year| year.fract() != 0.0) {
             return Err(Fault::value(format!(
                 "years hold parts of years, to which the timing {timing} does not apply"
@@ -155,6 +163,21 @@ impl Clock {
         let shift = |position: hence_core::Position| position.shift().unwrap_or(1.0);
         let shift = shift(self.timing.flows) - shift(self.timing.base);
         self.years.iter().map(|year| year + shift).fold(0.0, f64::max)
+    }
+
+    /// The offset of each year's flow.
+    ///
+    /// **Errors**: a timing that gives a flow two offsets.
+    pub fn offsets(&self) -> Outcome<Vec<f64>> {
+        let offset = |year: &f64| match self.timing.offset(*year) {
+            Ok(TimedOffset::At(offset)) => Ok(offset),
+            Ok(TimedOffset::Averaged(..)) => {
+                let words = format!("the timing {} gives a flow two offsets", self.timing);
+                Err(Fault::value(words).hint("flows middle"))
+            }
+            Err(error) => Err(Fault::core(&error, "timing")),
+        };
+        self.years.iter().map(offset).collect()
     }
 
     /// The factor of each year.
@@ -195,10 +218,41 @@ pub(super) fn years_after(base: Year, year: Year) -> Outcome<f64> {
     }
 }
 
+/// One row or column of numbers for each of the arguments, all of one shape. Blank cells of `flows` count as 0.
+pub(super) fn lists<const N: usize>(
+    arguments: &Arguments<'_>,
+    places: [usize; N],
+    flows: Option<usize>,
+) -> Outcome<[Vec<f64>; N]> {
+    let first = arguments.required(places[0]);
+    let shape = |range: &Range<'_>| (range.rows(), range.columns());
+    let mut lists = std::array::from_fn(|_| Vec::new());
+    for (list, i) in lists.iter_mut().zip(places) {
+        let range = arguments.required(i);
+        let name = arguments.place(i, range, 0).name;
+        let (rows, columns) = shape(range);
+        if rows > 1 && columns > 1 {
+            let words =
+                format!("{name} are {rows} rows by {columns} columns, allowed is one row or one column");
+            return Err(Fault::value(words));
+        }
+        if shape(range) != shape(first) {
+            let other = arguments.place(places[0], first, 0).name;
+            let words = format!("{name} are {rows} rows by {columns} columns, {other} are not");
+            return Err(Fault::value(words).hint("as many cells in the same direction"));
+        }
+        let read = if flows == Some(i) { flow } else { number };
+        let cells = (0..range.cells().len()).map(|index| read(arguments.place(i, range, index)));
+        *list = cells.collect::<Outcome<_>>()?;
+    }
+    Ok(lists)
+}
+
 /// The present value of each stream.
-pub(super) fn values(streams: &Streams, factors: &[f64]) -> Range<'static> {
-    let value =
-        |flows: &Outcome<Vec<f64>>| flows.as_ref().map(|flows| dot(factors, flows)).map_err(Clone::clone);
+pub(super) fn values(arguments: &Arguments<'_>, streams: &Streams, factors: &[f64]) -> Range<'static> {
+    let value = |flows: &Outcome<Vec<f64>>| {
+        arguments.note(flows.as_ref().map(|flows| dot(factors, flows)).map_err(Clone::clone))
+    };
     let cells: Vec<Cell<'static>> =
         streams.flows.iter().map(|flows| super::spread::cell(value(flows))).collect();
     Range::new(streams.rows, streams.columns, cells).expect("one cell a stream")

@@ -2,7 +2,8 @@
 
 use hence_core::{
     Curve, IRR_INTERVAL, Result, Where, annual_equivalent, elasticity_from_taxes, equity_weight,
-    internal_rates, ramsey_rate_uncertain, real_rate,
+    hazard_from_probability, hazard_from_waiting_time, internal_rates, marginal_utility,
+    ramsey_rate_uncertain, real_rate, utility,
 };
 
 use super::arguments::{Arguments, Place, Year, number, text};
@@ -10,7 +11,7 @@ use super::curve::{basis, context, curve};
 use super::fault::{Fault, Outcome};
 use super::flows::{Clock, Streams, values, years_after};
 use super::spread::spread;
-use super::{Cell, CellError, Range, explain};
+use super::{Cell, CellError, Range, draws, evidence, explain, switching, welfare};
 use crate::basis::CATALOGUE;
 
 /// Runs the function of that name.
@@ -19,9 +20,13 @@ pub(super) fn run(name: &str, arguments: &Arguments<'_>) -> Outcome<Range<'stati
         "FACTOR" => along(arguments, Curve::factor),
         "RATE" => along(arguments, Curve::forward_rate),
         "MEANRATE" => along(arguments, Curve::mean_rate),
+        "INSTANT" => along(arguments, Curve::instantaneous_rate),
         "VALUE" => present_values(arguments),
         "ANNUAL" => annual(arguments),
         "IRR" => rates_of_return(arguments),
+        "SWITCH" => switching::values(arguments),
+        "MULTIPLIER" => switching::multiplier(arguments),
+        "DRAWS" => draws::run(arguments),
         "RAMSEY" => spread(arguments, 4, |places| {
             let [rho, eta, g] = numbers(places)?;
             let sd = places[3].map_or(Ok(0.0), number)?;
@@ -31,6 +36,16 @@ pub(super) fn run(name: &str, arguments: &Arguments<'_>) -> Outcome<Range<'stati
             let [marginal, average] = numbers(places)?;
             elasticity_from_taxes(marginal, average).map_err(|e| about(&e))
         }),
+        "BRACKETS" => evidence::brackets(arguments),
+        "HAZARD" => evidence::hazard(arguments, hazard_from_probability),
+        "WAITING" => evidence::hazard(arguments, hazard_from_waiting_time),
+        "GROWTH" => evidence::growth(arguments),
+        "UTILITY" => welfare::of_consumption(arguments, utility),
+        "MARGINAL" => welfare::of_consumption(arguments, marginal_utility),
+        "WELFARE" => welfare::path(arguments),
+        "COMPENSATION" => welfare::shift(arguments),
+        "EXACT" => welfare::exact(arguments),
+        "EQUIVALENT" => welfare::equivalent(arguments),
         "WEIGHT" => spread(arguments, 3, |places| {
             let [income, reference, elasticity] = numbers(places)?;
             equity_weight(income, reference, elasticity).map_err(|e| about(&e))
@@ -41,12 +56,13 @@ pub(super) fn run(name: &str, arguments: &Arguments<'_>) -> Outcome<Range<'stati
         }),
         "SCHEDULE" => schedule(arguments),
         "EXPLAIN" => Ok(explain::run(arguments)),
+        "WHY" => explain::why(arguments),
         _ => Err(Fault::value(format!("there is no function {name}"))),
     }
 }
 
 /// The first numbers of a call.
-fn numbers<const N: usize>(places: &[Option<Place<'_>>]) -> Outcome<[f64; N]> {
+pub(super) fn numbers<const N: usize>(places: &[Option<Place<'_>>]) -> Outcome<[f64; N]> {
     let mut found = [0.0; N];
     for (number_found, place) in found.iter_mut().zip(places) {
         *number_found = number(place.expect("a required argument was looked for"))?;
@@ -55,7 +71,7 @@ fn numbers<const N: usize>(places: &[Option<Place<'_>>]) -> Outcome<[f64; N]> {
 }
 
 /// An error of the library about an argument that bears the same name here.
-fn about(error: &hence_core::Error) -> Fault {
+pub(super) fn about(error: &hence_core::Error) -> Fault {
     Fault::core(error, error.argument())
 }
 
@@ -109,9 +125,9 @@ fn present_values(arguments: &Arguments<'_>) -> Outcome<Range<'static>> {
     let place = one_basis(arguments)?;
     let basis = basis(place)?;
     let streams = Streams::read(arguments, 1, 2)?;
-    let clock = Clock::read(arguments, &streams.axis, &basis, 3, 4)?;
+    let clock = Clock::read(arguments, &streams.axis, basis.timing(), 3, 4)?;
     let factors = clock.factors(&basis, place, &streams.axis)?;
-    Ok(values(&streams, &factors))
+    Ok(values(arguments, &streams, &factors))
 }
 
 /// The basis argument of a function that takes one basis only.
@@ -119,24 +135,30 @@ pub(super) fn one_basis<'a>(arguments: &Arguments<'a>) -> Outcome<Place<'a>> {
     arguments.single(0)?.ok_or_else(|| Fault::value("the basis is left out"))
 }
 
-/// The rates rising; `#NUM!` where there is none, and for each part of the interval in which the flows do not settle how
-/// many there are.
 fn rates_of_return(arguments: &Arguments<'_>) -> Outcome<Range<'static>> {
     let streams = Streams::read(arguments, 0, 1)?;
-    let [flows] = streams.flows.as_slice() else {
-        return Err(Fault::value(format!("flows hold {} streams, allowed is one", streams.flows.len())));
-    };
-    let flows = flows.clone()?;
+    let flows = streams.only("flows")?;
     // Rates of return do not depend on the base.
     let first: Year = streams.axis.years[0].1;
     let offsets = streams.axis.years.iter().map(|(_, year)| years_after(first, *year));
     let offsets: Vec<f64> = offsets.collect::<Outcome<_>>()?;
-    let bound = |i, otherwise| arguments.single(i)?.map_or(Ok(otherwise), number);
-    let interval = (bound(2, IRR_INTERVAL.0)?, bound(3, IRR_INTERVAL.1)?);
+    let interval = bounds(arguments, 2, IRR_INTERVAL)?;
     let found = internal_rates(&offsets, &flows, interval).map_err(|e| about(&e))?;
-    let mut cells: Vec<Cell<'static>> = found.rates.into_iter().map(Cell::Number).collect();
-    cells.extend(found.unresolved.iter().map(|_| Cell::Error(CellError::Number)));
-    Range::new(cells.len(), 1, cells).ok_or_else(|| Fault::number("there is no rate of return"))
+    rising(found.rates, &found.unresolved, "there is no rate of return")
+}
+
+/// The interval that two arguments state, or the usual one.
+pub(super) fn bounds(arguments: &Arguments<'_>, first: usize, usual: (f64, f64)) -> Outcome<(f64, f64)> {
+    let bound = |i, otherwise| arguments.single(i)?.map_or(Ok(otherwise), number);
+    Ok((bound(first, usual.0)?, bound(first + 1, usual.1)?))
+}
+
+/// Values one below the other; `#NUM!` where there is none, and for each part of the interval in which the flows do not
+/// settle how many there are.
+pub(super) fn rising(values: Vec<f64>, unresolved: &[(f64, f64)], none: &str) -> Outcome<Range<'static>> {
+    let mut cells: Vec<Cell<'static>> = values.into_iter().map(Cell::Number).collect();
+    cells.extend(unresolved.iter().map(|_| Cell::Error(CellError::Number)));
+    Range::new(cells.len(), 1, cells).ok_or_else(|| Fault::number(none))
 }
 
 fn schedule(arguments: &Arguments<'_>) -> Outcome<Range<'static>> {

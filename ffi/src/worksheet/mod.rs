@@ -6,12 +6,16 @@
 mod arguments;
 mod cells;
 mod curve;
+mod draws;
+mod evidence;
 mod explain;
 mod fault;
 mod flows;
 mod functions;
 mod spread;
+mod switching;
 mod table;
+mod welfare;
 
 pub use cells::{Cell, CellError, Range};
 pub use table::{Argument, CATEGORY, FUNCTIONS, Function};
@@ -35,7 +39,9 @@ pub fn call(function: &'static Function, arguments: &[Option<Range<'_>>]) -> Ran
         .and_then(|arguments| functions::run(function.name, &arguments));
     match answer {
         Ok(answer) => answer,
-        Err(fault) if function.name == "EXPLAIN" => Range::single(Cell::Text(fault.words.into())),
+        Err(fault) if matches!(function.name, "EXPLAIN" | "WHY") => {
+            Range::single(Cell::Text(fault.words.into()))
+        }
         Err(fault) => Range::single(Cell::Error(fault.error)),
     }
 }

@@ -30,7 +30,7 @@ pub(super) fn spread<'a>(
                 let blank = places[i].filter(|place| place.range.cells().len() > 1);
                 empty |= blank.is_some_and(|place| is_blank(place.cell()));
             }
-            cells.push(if empty { Cell::Text("".into()) } else { cell(f(&places)) });
+            cells.push(if empty { Cell::Text("".into()) } else { cell(arguments.note(f(&places))) });
         }
     }
     Range::new(rows, columns, cells).ok_or_else(|| Fault::value("the arguments have no cells"))

@@ -2,10 +2,9 @@
 
 use std::path::{Path, PathBuf};
 
-use hence_core::Basis;
 use hence_workbook::brief::{self, BriefRequest, brief};
-use hence_workbook::package::{may_write, same_file, write_atomically};
-use hence_workbook::problem::{Place, Problem, Result as BookResult};
+use hence_workbook::package::write_atomically;
+use hence_workbook::problem::Problem;
 use hence_workbook::report::Status;
 use serde::Serialize;
 
@@ -49,33 +48,31 @@ enum Form {
 /// Makes the page and writes it.
 pub fn run(args: &Brief, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    for line in &args.against {
-        Basis::parse(line, &catalogue).map_err(|error| super::typed(&error, line))?;
-    }
     let request = BriefRequest {
         question: args.question.clone(),
-        against: args.against.clone(),
-        roles: super::fill::roles(&args.roles)?,
-        as_of: args.as_of.clone(),
-        by: args.by.clone(),
+        against: super::against(&args.against, &catalogue)?,
+        roles: super::roles(&args.roles)?,
+        plan: super::planned(&args.roles, Some(&args.of))?,
+        as_of: args.signature.as_of.clone(),
+        by: args.signature.by.clone(),
     };
     let (output, form) = output(&args.out)?;
-    if output == Output::Stream && args.json {
+    if output == Output::Stream && args.document.json {
         return Err(Failure::Message(
             "--out - and --json both want standard output\nTry: --out with a file".to_owned(),
         ));
     }
-    let shown = input::shown(&args.book);
+    let shown = input::shown(&args.source.book);
     let progress = Progress::start();
     progress.doing(&format!("briefing on {shown}"));
-    let made = may(args, &output).and_then(|()| {
-        let found = brief(&input::open(&args.book)?, &request, &catalogue)?;
+    let made = output.may_write(&args.source.book, args.overwrite.force).and_then(|()| {
+        let found = brief(&input::open(&args.source.book)?, &request, &catalogue)?;
         let page = match form {
             Form::Html => brief::html(&found),
             Form::Markdown => brief::markdown(&found),
         };
         if let Output::File(path) = &output {
-            write_atomically(path, page.as_bytes(), args.force)?;
+            write_atomically(path, page.as_bytes(), args.overwrite.force)?;
         }
         Ok((found, page))
     });
@@ -87,7 +84,7 @@ pub fn run(args: &Brief, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
             if output == Output::Stream {
                 stream(page.as_bytes())?;
                 terminal.tell(&text);
-            } else if args.json {
+            } else if args.document.json {
                 terminal::print(&json(&shown, Some(output.shown()), &found))?;
             } else {
                 terminal::print(&text)?;
@@ -96,7 +93,7 @@ pub fn run(args: &Brief, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
         }
         Err(error) => {
             render::problems(terminal, &shown, error.problems());
-            if args.json {
+            if args.document.json {
                 terminal::print(&failed(shown, error.problems()))?;
             }
             Ok(Outcome::of(&error))
@@ -122,18 +119,6 @@ fn output(path: &Path) -> Result<(Output, Form), Failure> {
         )));
     };
     Ok((Output::File(path.to_owned()), form))
-}
-
-/// The input is never written, and an existing file needs `--force`.
-fn may(args: &Brief, output: &Output) -> BookResult<()> {
-    let Output::File(path) = output else { return Ok(()) };
-    if !is_dash(&args.book) && same_file(&args.book, path) {
-        let message = format!("the output {} is the input, which is never written", path.display());
-        return Err(Problem::error("output-is-input", Place::default(), message)
-            .hint("give --out another name")
-            .into());
-    }
-    may_write(path, args.force)
 }
 
 fn text(input: &str, output: &str, found: &brief::Brief) -> String {

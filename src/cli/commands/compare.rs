@@ -2,10 +2,9 @@
 
 use std::path::PathBuf;
 
-use hence_core::{Basis, Parameter};
+use hence_core::Parameter;
 use hence_workbook::compare::{CompareRequest, Comparison, book, compare, picture as draw};
-use hence_workbook::package::{may_write, same_file, write_atomically};
-use hence_workbook::problem::{Place, Problem, Result as BookResult};
+use hence_workbook::package::write_atomically;
 use hence_workbook::report::Status;
 
 use crate::args::{Compare, MapOver};
@@ -17,33 +16,37 @@ use crate::{Failure, Outcome, comparison, input, render};
 /// Compares, prints, and writes the tables where asked.
 pub fn run(args: &Compare, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    for line in &args.against {
-        Basis::parse(line, &catalogue).map_err(|error| super::typed(&error, line))?;
-    }
     let map = args.map.map(|map| match map {
         MapOver::Elasticity => Parameter::Elasticity,
         MapOver::Growth => Parameter::Growth,
     });
-    let roles = super::fill::roles(&args.roles)?;
-    let request = CompareRequest { against: args.against.clone(), roles, map };
+    let request = CompareRequest {
+        against: super::against(&args.against, &catalogue)?,
+        roles: super::roles(&args.roles)?,
+        plan: super::planned(&args.roles, Some(&args.of))?,
+        map,
+    };
     let output = output(args)?;
     let picture = picture_output(args)?;
-    let shown = input::shown(&args.book);
+    let shown = input::shown(&args.source.book);
     let progress = Progress::start();
     progress.doing(&format!("comparing {shown}"));
     let outputs = output.iter().chain(&picture);
-    let compared = outputs.clone().try_for_each(|output| may(args, output)).and_then(|()| {
-        let package = input::open(&args.book)?;
-        let found = compare(&package, &request, &catalogue)?;
-        let bytes = output.as_ref().map(|_| book(&package, &found)).transpose()?;
-        if let (Some(Output::File(path)), Some(bytes)) = (&output, &bytes) {
-            write_atomically(path, bytes, args.force)?;
-        }
-        if let (Some(Output::File(path)), Some(map)) = (&picture, &found.map) {
-            write_atomically(path, draw(&found, map).as_bytes(), args.force)?;
-        }
-        Ok((found, bytes))
-    });
+    let compared = outputs
+        .clone()
+        .try_for_each(|output| output.may_write(&args.source.book, args.overwrite.force))
+        .and_then(|()| {
+            let package = input::open(&args.source.book)?;
+            let found = compare(&package, &request, &catalogue)?;
+            let bytes = output.as_ref().map(|_| book(&package, &found)).transpose()?;
+            if let (Some(Output::File(path)), Some(bytes)) = (&output, &bytes) {
+                write_atomically(path, bytes, args.overwrite.force)?;
+            }
+            if let (Some(Output::File(path)), Some(map)) = (&picture, &found.map) {
+                write_atomically(path, draw(&found, map).as_bytes(), args.overwrite.force)?;
+            }
+            Ok((found, bytes))
+        });
     drop(progress);
     match compared {
         Ok((found, bytes)) => {
@@ -56,7 +59,7 @@ pub fn run(args: &Compare, schedules: &Option<PathBuf>, terminal: &Terminal) -> 
         }
         Err(error) => {
             render::problems(terminal, &shown, error.problems());
-            if args.json {
+            if args.document.json {
                 terminal::print(&comparison::failed(error.problems()))?;
             }
             Ok(Outcome::of(&error))
@@ -71,7 +74,7 @@ fn print(
     found: &Comparison,
     terminal: &Terminal,
 ) -> Result<(), Failure> {
-    if args.json {
+    if args.document.json {
         return terminal::print(&comparison::json(found));
     }
     if args.csv {
@@ -89,7 +92,7 @@ fn print(
 fn output(args: &Compare) -> Result<Option<Output>, Failure> {
     let Some(path) = &args.out else { return Ok(None) };
     let output = Output::named(path)?;
-    if output == Output::Stream && (args.json || args.csv) {
+    if output == Output::Stream && (args.document.json || args.csv) {
         return Err(Failure::Message(
             "--out - and --json or --csv both want standard output\nTry: --out with a file".to_owned(),
         ));
@@ -116,16 +119,4 @@ fn picture_output(args: &Compare) -> Result<Option<Output>, Failure> {
     let message =
         format!("--picture {}: the picture is an .svg file\nTry: {}", path.display(), instead.display());
     Err(Failure::Message(message))
-}
-
-/// The input is never written, and an existing file needs `--force`.
-fn may(args: &Compare, output: &Output) -> BookResult<()> {
-    let Output::File(path) = output else { return Ok(()) };
-    if !input::is_dash(&args.book) && same_file(&args.book, path) {
-        let message = format!("the output {} is the input, which is never written", path.display());
-        return Err(Problem::error("output-is-input", Place::default(), message)
-            .hint("give --out another name")
-            .into());
-    }
-    may_write(path, args.force)
 }

@@ -43,7 +43,7 @@ pub fn run(args: &Curve, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
     for warning in &warnings {
         terminal.say("warning", &format!("{}: {warning}", basis.canonical()));
     }
-    let text = if args.json {
+    let text = if args.document.json {
         json(&basis, &warnings, &rows)
     } else if args.csv {
         csv(&rows)

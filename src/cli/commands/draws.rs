@@ -21,7 +21,11 @@ const BAR: usize = 40;
 pub fn run(args: &args::Draws, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
     let texts = [&args.preference, &args.hazard, &args.elasticity, &args.growth];
-    let mut request = DrawsRequest { roles: super::fill::roles(&args.roles)?, ..DrawsRequest::default() };
+    let mut request = DrawsRequest {
+        roles: super::roles(&args.roles)?,
+        plan: super::planned(&args.roles, Some(&args.of))?,
+        ..DrawsRequest::default()
+    };
     for (quantity, text) in Quantity::ALL.into_iter().zip(texts) {
         let Some(text) = text else { continue };
         let parsed = Distribution::parse(quantity, text).map_err(|error| super::typed(&error, text))?;
@@ -29,16 +33,16 @@ pub fn run(args: &args::Draws, schedules: &Option<PathBuf>, terminal: &Terminal)
     }
     let all = || std::thread::available_parallelism().unwrap_or(NonZeroUsize::MIN);
     let draws = Draws { count: args.draws, seed: args.seed, threads: args.threads.unwrap_or_else(all) };
-    let shown = input::shown(&args.book);
+    let shown = input::shown(&args.source.book);
     let progress = Progress::start();
     progress.doing(&format!("drawing for {shown}"));
-    let prepared = input::open(&args.book).and_then(|package| prepare(&package, &request, &catalogue));
+    let prepared = input::open(&args.source.book).and_then(|package| prepare(&package, &request, &catalogue));
     let prepared = match prepared {
         Ok(prepared) => prepared,
         Err(error) => {
             drop(progress);
             render::problems(terminal, &shown, error.problems());
-            if args.json {
+            if args.document.json {
                 let problems: Vec<Found> = error.problems().iter().map(Found::from).collect();
                 let document =
                     json!({ "schema": 1, "input": shown, "status": "failed", "problems": problems });
@@ -53,7 +57,7 @@ pub fn run(args: &args::Draws, schedules: &Option<PathBuf>, terminal: &Terminal)
     let report = drawn.map_err(|error| super::typed(&error, ""))?;
     let text = if args.csv {
         csv(&report)
-    } else if args.json {
+    } else if args.document.json {
         document(&shown, args, &prepared, &report)
     } else {
         escape(&page(&shown, args, &prepared, &report))

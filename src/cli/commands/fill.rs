@@ -1,123 +1,207 @@
-//! `hence fill`: the main job, on one workbook or several.
+//! `hence fill`: the main job, on one workbook, several, or a shelf of them.
 
+use std::num::NonZeroUsize;
 use std::path::{Path, PathBuf};
+use std::time::Duration;
 
-use hence_core::{Basis, Catalogue};
-use hence_workbook::fill::{FillRequest, fill, fill_file};
-use hence_workbook::package::write_atomically;
+use hence_core::Catalogue;
+use hence_workbook::fill::{FillRequest, fill};
+use hence_workbook::package::{Identity, clear_abandoned, may_write, write_atomically};
 use hence_workbook::problem::Result as BookResult;
-use hence_workbook::report::{Report, Status};
+use hence_workbook::shelf::{Done, Order, Record, summary};
 
 use crate::args::{Fill, WriteWhat};
-use crate::json::{Document, FilledBook};
+use crate::input::{self, Input};
+use crate::json::Document;
 use crate::outputs::{Folder, Output, outputs_for, stream};
-use crate::progress::Progress;
+use crate::shelf::gather::{Gathered, gather, skipped_words};
+use crate::shelf::pool::{self, Listener, Run};
+use crate::shelf::telling::{How, Shown, Telling};
+use crate::shelf::worker::{Limits, Task};
 use crate::terminal::{self, Terminal};
-use crate::{Failure, Outcome, input, render};
+use crate::{Failure, Outcome, ledger, limits};
 
 /// Fills every workbook; one that fails does not keep the others from being filled.
 pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
-    for line in &args.against {
-        Basis::parse(line, &catalogue).map_err(|error| super::typed(&error, line))?;
-    }
-    let request = FillRequest {
-        basis: args.basis.clone(),
-        replace: args.replace.as_deref().map(|text| pair(text, "--replace", "OLD=NEW")).transpose()?,
-        roles: roles(&args.roles)?,
-        formulas: args.write == WriteWhat::Formulas,
-        replace_formulas: args.replace_formulas,
-        against: args.against.clone(),
-        as_of: args.as_of.clone(),
-        by: args.by.clone(),
-    };
-    let outputs = outputs_for(&args.books, args.out.as_deref())?;
+    let request = request(args, &catalogue)?;
+    let order = Order { request, force: args.overwrite.force, resume: args.resume, found: false };
+    let all = gather(&args.books, args.out.as_deref())?;
+    let outputs = outputs_for(&all.inputs, args.out.as_deref())?;
     let streams = outputs.contains(&Output::Stream);
-    if streams && args.json {
+    if streams && args.document.json {
         return Err(Failure::Message(
             "--json and a workbook both want standard output\nTry: --out with a file".into(),
         ));
     }
-    let _folder = Folder::make(args.out.as_deref())?;
-    let progress = Progress::start();
-    let mut books = Vec::new();
-    let mut texts = Vec::new();
-    let mut ended = Outcome::Done;
-    for (i, (book, output)) in args.books.iter().zip(&outputs).enumerate() {
-        let (shown, written) = (input::shown(book), output.shown());
-        progress.doing(&match args.books.len() {
-            1 => format!("filling {shown}"),
-            n => format!("filling {} of {n}: {shown}", i + 1),
-        });
-        let filled = fill_one(book, output, &request, &catalogue, args.force);
-        progress.pause();
-        match filled {
-            Ok((report, bytes)) => {
-                render::problems(terminal, &shown, &report.problems);
-                if report.status() != Status::Done {
-                    ended = ended.max(Outcome::Wrong);
-                }
-                if let Some(bytes) = bytes {
-                    stream(&bytes)?;
-                }
-                texts.push(render::report(&shown, &written, &report));
-                books.push(FilledBook::filled(shown, written, &report));
-            }
-            Err(error) => {
-                render::problems(terminal, &shown, error.problems());
-                terminal.complain(&format!("{shown}: not filled"));
-                ended = ended.max(Outcome::of(&error));
-                books.push(FilledBook::failed(shown, error.problems()));
-            }
+    for (path, flag) in [(&args.ledger, "--ledger"), (&args.summary, "--summary")] {
+        if let Some(path) = path {
+            may_keep(path, flag, args, &all.inputs, &outputs)?;
         }
     }
-    drop(progress);
-    let text = texts.join("\n");
-    if args.json {
-        terminal::print(&Document::text(books))?;
-    } else if streams {
-        terminal.tell(&text);
-    } else {
-        terminal::print(&text)?;
+    if !limits::LIMITS_MEMORY && args.memory_limit.is_some() {
+        terminal.say("warning", "--memory-limit: this system does not limit the memory of a process");
     }
-    Ok(ended)
+    let folder = Folder::make(args.out.as_deref())?;
+    if args.resume {
+        clear_up(&outputs);
+    }
+    let ended = tell_skipped(&all, terminal);
+    let shown: Vec<Shown> = all
+        .inputs
+        .iter()
+        .zip(&outputs)
+        .map(|(input, output)| (input::shown(&input.path), output.shown()))
+        .collect();
+    let how = How {
+        brief: all.walked,
+        aside: streams,
+        json: args.document.json,
+        ledger: args.ledger.is_some(),
+        summary: args.summary.is_some(),
+    };
+    let mut telling = Telling::new(how, terminal, &shown, order.request.sha256(&catalogue));
+    telling.ended = ended;
+    if streams || all.inputs.iter().any(|input| input::is_dash(&input.path)) {
+        for (i, (input, output)) in all.inputs.iter().zip(&outputs).enumerate() {
+            let (done, bytes) = fill_here(&input.path, output, &order, &catalogue);
+            if let Some(bytes) = bytes {
+                stream(&bytes)?;
+            }
+            telling.ended(i, done);
+        }
+    } else {
+        let run = how_to_run(args, order, schedules);
+        pool::run(&tasks(&all.inputs, &outputs), &run, &mut telling).inspect_err(|_| telling.stopped())?;
+    }
+    drop(folder);
+    if let Some(path) = &args.ledger {
+        write_atomically(path, telling.lines.as_bytes(), args.overwrite.force || args.resume)
+            .map_err(message)?;
+    }
+    if let Some(path) = &args.summary {
+        let bytes = summary::write(&telling.records, path).map_err(message)?;
+        write_atomically(path, &bytes, args.overwrite.force || args.resume).map_err(message)?;
+    }
+    let audited: Vec<(PathBuf, &str)> = telling
+        .audited
+        .iter()
+        .map(|i| (all.inputs[*i].path.clone(), "it holds audit sheets of hence"))
+        .collect();
+    for line in skipped_words(&audited) {
+        terminal.say("note", &line);
+    }
+    if args.document.json {
+        terminal::print(&Document::text(std::mem::take(&mut telling.books)))?;
+    }
+    telling.close()
 }
 
-/// Fills one; the bytes come back where they go to standard output.
-fn fill_one(
+fn request(args: &Fill, catalogue: &Catalogue) -> Result<FillRequest, Failure> {
+    Ok(FillRequest {
+        basis: args.basis.clone(),
+        base: args.base.clone(),
+        prices: args.prices.clone(),
+        replace: args.replace.as_deref().map(|text| super::pair(text, "--replace", "OLD=NEW")).transpose()?,
+        roles: super::roles(&args.roles)?,
+        plan: super::planned(&args.roles, None)?,
+        formulas: args.write == WriteWhat::Formulas,
+        replace_formulas: args.replace_formulas,
+        against: super::against(&args.against, catalogue)?,
+        settle: args.settle,
+        as_of: args.signature.as_of.clone(),
+        by: args.signature.by.clone(),
+    })
+}
+
+fn how_to_run(args: &Fill, order: Order, schedules: &Option<PathBuf>) -> Run {
+    let jobs = args.jobs.or_else(|| std::thread::available_parallelism().ok());
+    Run {
+        order,
+        schedules: schedules.clone(),
+        limits: Limits {
+            memory: args.memory_limit.unwrap_or(Limits::MEMORY_MB).get() << 20,
+            time: Duration::from_secs(args.time_limit.unwrap_or(Limits::TIME_SECONDS).get()),
+        },
+        jobs: jobs.unwrap_or(NonZeroUsize::MIN),
+    }
+}
+
+fn tasks(inputs: &[Input], outputs: &[Output]) -> Vec<Task> {
+    let pairs = inputs.iter().zip(outputs);
+    let task = |(input, output): (&Input, &Output)| match output {
+        Output::File(path) => {
+            Some(Task { input: input.path.clone(), output: path.clone(), found: input.inside.is_some() })
+        }
+        Output::Stream => None,
+    };
+    pairs.filter_map(task).collect()
+}
+
+/// Whether a ledger or summary may be written, before hours go into what it is to hold.
+fn may_keep(
+    path: &Path,
+    flag: &str,
+    args: &Fill,
+    inputs: &[Input],
+    outputs: &[Output],
+) -> Result<(), Failure> {
+    let own = Identity::of(path);
+    let output = |output: &Output| matches!(output, Output::File(path) if Identity::of(path) == own);
+    if inputs.iter().any(|input| Identity::of(&input.path) == own) || outputs.iter().any(output) {
+        return Err(Failure::Message(format!("{flag} {}: this is one of the workbooks", path.display())));
+    }
+    let continued = args.resume && (ledger::is_one(path) || summary::is_one(path));
+    may_write(path, args.overwrite.force || continued).map_err(message)
+}
+
+fn message(error: hence_workbook::problem::WorkbookError) -> Failure {
+    Failure::Message(error.to_string())
+}
+
+/// Takes away what a dead run left beside the outputs.
+fn clear_up(outputs: &[Output]) {
+    let mut last = None;
+    for output in outputs {
+        let Output::File(path) = output else { continue };
+        let folder = path.parent().filter(|folder| !folder.as_os_str().is_empty()).unwrap_or(Path::new("."));
+        if last != Some(folder) {
+            clear_abandoned(folder);
+        }
+        last = Some(folder);
+    }
+}
+
+/// Says what the walk through folders passed over or could not read.
+fn tell_skipped(all: &Gathered, terminal: &Terminal) -> Outcome {
+    for line in skipped_words(&all.skipped) {
+        terminal.say("note", &line);
+    }
+    for (folder, why) in &all.unreadable {
+        terminal.complain(&format!("{} cannot be read: {why}", folder.display()));
+    }
+    if all.unreadable.is_empty() { Outcome::Done } else { Outcome::Wrong }
+}
+
+/// Fills one in this process: what comes from standard input or goes to standard output.
+fn fill_here(
     book: &Path,
     output: &Output,
-    request: &FillRequest,
+    order: &Order,
     catalogue: &Catalogue,
-    force: bool,
-) -> BookResult<(Report, Option<Vec<u8>>)> {
-    match output {
-        Output::File(path) if !input::is_dash(book) => {
-            fill_file(book, path, request, catalogue, force).map(|report| (report, None))
+) -> (BookResult<Done>, Option<Vec<u8>>) {
+    let filled = input::open(book).and_then(|package| fill(&package, &order.request, catalogue));
+    let filled = filled.and_then(|filled| {
+        if let Output::File(path) = output {
+            write_atomically(path, &filled.bytes, order.force)?;
         }
-        Output::File(path) => {
-            let filled = fill(&input::open(book)?, request, catalogue)?;
-            write_atomically(path, &filled.bytes, force)?;
-            Ok((filled.report, None))
+        Ok(filled)
+    });
+    match filled {
+        Ok(filled) => {
+            let record = Record::filled(&filled.meta, &filled.report);
+            (Ok(Done::Filled(record)), (*output == Output::Stream).then_some(filled.bytes))
         }
-        Output::Stream => {
-            let filled = fill(&input::open(book)?, request, catalogue)?;
-            Ok((filled.report, Some(filled.bytes)))
-        }
+        Err(error) => (Err(error), None),
     }
-}
-
-/// `A=B` in two.
-fn pair(text: &str, flag: &str, shape: &str) -> Result<(String, String), Failure> {
-    match text.split_once('=') {
-        Some((a, b)) if !a.trim().is_empty() && !b.trim().is_empty() => {
-            Ok((a.trim().into(), b.trim().into()))
-        }
-        _ => Err(Failure::Message(format!("{flag} {text}: expected {shape}"))),
-    }
-}
-
-/// The `--role` pairs.
-pub fn roles(texts: &[String]) -> Result<Vec<(String, String)>, Failure> {
-    texts.iter().map(|text| pair(text, "--role", "ROLE=RANGE, as in years=\"Sheet1!C4:Z4\"")).collect()
 }

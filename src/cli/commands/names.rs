@@ -1,10 +1,8 @@
 //! `hence names`: which roles a workbook declares, and a copy with suggested names.
 
-use std::path::Path;
-
 use hence_workbook::naming::{Naming, roles_of, with_suggestions};
-use hence_workbook::package::{same_file, write_atomically};
-use hence_workbook::problem::{Place, Problem, Result as BookResult, Severity};
+use hence_workbook::package::write_atomically;
+use hence_workbook::problem::{Result as BookResult, Severity};
 
 use crate::args::Names;
 use crate::json::{Document, Found};
@@ -14,10 +12,10 @@ use crate::{Failure, Outcome, input, render};
 
 /// Lists roles; with `--suggest`, writes the guesses into a copy and lists them with their reasons.
 pub fn run(args: &Names, terminal: &Terminal) -> Result<Outcome, Failure> {
-    let shown = input::shown(&args.book);
+    let shown = input::shown(&args.source.book);
     let output = args.out.as_deref().map(Output::named).transpose()?;
     let streams = output == Some(Output::Stream);
-    if streams && args.json {
+    if streams && args.document.json {
         return Err(Failure::Message(
             "--json and --out - both want standard output\nTry: --out with a file".into(),
         ));
@@ -26,7 +24,7 @@ pub fn run(args: &Names, terminal: &Terminal) -> Result<Outcome, Failure> {
         Ok(result) => result,
         Err(error) => {
             render::problems(terminal, &shown, error.problems());
-            if args.json {
+            if args.document.json {
                 let problems: Vec<Found> = error.problems().iter().map(Found::from).collect();
                 terminal::print(&Document::text(vec![serde_json::json!({
                     "input": shown, "output": null, "found": [], "guesses": [], "missing": [], "problems": problems
@@ -37,7 +35,7 @@ pub fn run(args: &Names, terminal: &Terminal) -> Result<Outcome, Failure> {
     };
     render::problems(terminal, &shown, &report.problems);
     let written = output.as_ref().map(Output::shown);
-    if args.json {
+    if args.document.json {
         terminal::print(&json(&shown, written.as_deref(), &report))?;
     } else if streams {
         terminal.tell(&text(written.as_deref(), &report));
@@ -53,25 +51,14 @@ pub fn run(args: &Names, terminal: &Terminal) -> Result<Outcome, Failure> {
 
 /// The report, and the copy's bytes where one was asked for.
 fn examine(args: &Names, output: Option<&Output>) -> BookResult<(Naming, Vec<u8>)> {
-    let package = input::open(&args.book)?;
+    let package = input::open(&args.source.book)?;
     let Some(output) = output else { return Ok((roles_of(&package)?, Vec::new())) };
-    if let Output::File(path) = output {
-        refuse_input(&args.book, path)?;
-    }
+    output.may_write(&args.source.book, args.overwrite.force)?;
     let (report, bytes) = with_suggestions(&package)?;
     if let Output::File(path) = output {
-        write_atomically(path, &bytes, args.force)?;
+        write_atomically(path, &bytes, args.overwrite.force)?;
     }
     Ok((report, bytes))
-}
-
-/// The input is never written.
-fn refuse_input(book: &Path, copy: &Path) -> BookResult<()> {
-    if input::is_dash(book) || !same_file(book, copy) {
-        return Ok(());
-    }
-    let message = format!("the copy {} is the input, which is never written", copy.display());
-    Err(Problem::error("output-is-input", Place::default(), message).hint("give --out another name").into())
 }
 
 fn json(shown: &str, written: Option<&str>, report: &Naming) -> String {

@@ -26,7 +26,7 @@ const SHOWN: [f64; 8] = [1.0, 2.0, 3.0, 10.0, 30.0, 50.0, 100.0, 200.0];
 pub fn run(args: &Rate, terminal: &Terminal) -> Result<Outcome, Failure> {
     let output = args.schedule.as_deref();
     let streams = output.is_some_and(is_dash);
-    if streams && args.json {
+    if streams && args.document.json {
         return Err(Failure::Message(
             "--json and --schedule - both want standard output\nTry: --schedule with a file".into(),
         ));
@@ -48,14 +48,14 @@ pub fn run(args: &Rate, terminal: &Terminal) -> Result<Outcome, Failure> {
     if let (Some(path), Some(id)) = (output, id) {
         let year = args.year.unwrap_or_else(this_year);
         let text = derived.schedule(&id, year).map_err(|e| super::typed(&e, ""))?;
-        if !streams && let Err(error) = write_atomically(path, text.as_bytes(), args.force) {
+        if !streams && let Err(error) = write_atomically(path, text.as_bytes(), args.overwrite.force) {
             render::problems(terminal, &path.display().to_string(), error.problems());
             return Ok(Outcome::of(&error));
         }
         file = Some(text);
     }
     let written = output.filter(|_| !streams).map(|path| path.display().to_string());
-    if args.json {
+    if args.document.json {
         terminal::print(&document(&derived, written.as_deref(), series.as_ref())?)?;
     } else if streams {
         terminal.tell(&text(&derived, None));
@@ -71,7 +71,7 @@ pub fn run(args: &Rate, terminal: &Terminal) -> Result<Outcome, Failure> {
 /// The end of a run on a workbook that has no series to estimate from.
 fn refused(args: &Rate, terminal: &Terminal, book: &str, error: &WorkbookError) -> Result<Outcome, Failure> {
     render::problems(terminal, book, error.problems());
-    if args.json {
+    if args.document.json {
         let problems: Vec<Found> = error.problems().iter().map(Found::from).collect();
         let document = json!({"schema": 1, "line": null, "figures": [], "problems": problems});
         terminal::print(&format!("{document:#}\n"))?;

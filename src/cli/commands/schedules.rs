@@ -11,7 +11,7 @@ use crate::{Failure, Outcome, render, terminal};
 pub fn run(args: &Schedules, folder: &Option<PathBuf>) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(folder)?;
     let text = match &args.id {
-        None if args.json => {
+        None if args.document.json => {
             let list: Vec<_> = catalogue.schedules().into_iter().map(json).collect();
             format!("{:#}\n", serde_json::json!({"schema": 1, "schedules": list}))
         }
@@ -22,7 +22,7 @@ pub fn run(args: &Schedules, folder: &Option<PathBuf>) -> Result<Outcome, Failur
                     "schedules: no schedule {id:?} is known (unknown-schedule)\nTry: hence schedules, for the list"
                 )));
             };
-            if args.json {
+            if args.document.json {
                 format!("{:#}\n", serde_json::json!({"schema": 1, "schedules": [json(schedule)]}))
             } else {
                 one(schedule)

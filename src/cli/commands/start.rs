@@ -21,7 +21,7 @@ pub fn run(args: &Start, terminal: &Terminal) -> Result<Outcome, Failure> {
                     path.with_extension("xlsx").display()
                 )));
             }
-            if let Err(error) = hence_workbook::start::start_file(path, args.force) {
+            if let Err(error) = hence_workbook::start::start_file(path, args.overwrite.force) {
                 return failed(error);
             }
             terminal::print(&terminal::escape(&format!(

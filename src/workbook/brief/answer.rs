@@ -14,11 +14,8 @@ pub(super) fn answer(facts: &Facts<'_>) -> Vec<String> {
              present value is {own}."
         )];
     };
-    let level: Vec<usize> = ranked
-        .iter()
-        .copied()
-        .filter(|&i| facts.npv(first) - facts.npv(i) <= facts.dust(first).max(facts.dust(i)))
-        .collect();
+    let level: Vec<usize> =
+        ranked.iter().copied().filter(|&i| !facts.worth(first).beats(facts.worth(i))).collect();
     let mut texts = if ranked.len() == 1 {
         alone(facts, first)
     } else if level.len() > 1 {
@@ -36,10 +33,9 @@ pub(super) fn answer(facts: &Facts<'_>) -> Vec<String> {
     texts
 }
 
-/// How far above or below zero a value is, rounding apart.
+/// Whether a value is above or below zero, rounding apart.
 fn sign(facts: &Facts<'_>, option: usize) -> i32 {
-    let npv = facts.npv(option);
-    if npv.abs() <= facts.dust(option) { 0 } else { npv.signum() as i32 }
+    facts.worth(option).sign()
 }
 
 fn basis(facts: &Facts<'_>) -> &'static str {

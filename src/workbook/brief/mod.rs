@@ -25,8 +25,10 @@ use crate::model::Workbook;
 use crate::outcome::ChoiceOutcome;
 use crate::package::Package;
 use crate::plan::Stale;
+use crate::planfile::PlanFile;
 use crate::preflight::preflight;
 use crate::problem::{Problem, Result};
+use crate::ranking::Worth;
 use crate::references::SheetRange;
 use crate::report::{OptionReport, Status, option_reports};
 use crate::resolve::{Options, resolve};
@@ -47,6 +49,8 @@ pub struct BriefRequest {
     pub against: Vec<String>,
     /// Roles for cells without a defined name: role, range.
     pub roles: Vec<(String, String)>,
+    /// What is where, for a workbook without names.
+    pub plan: Option<PlanFile>,
     /// The date or state of the data.
     pub as_of: Option<String>,
     /// Who ran it.
@@ -176,13 +180,9 @@ impl Facts<'_> {
         self.baseline().map(|i| format!(" over {}", self.name(i))).unwrap_or_default()
     }
 
-    /// How far from zero a net present value may be by rounding alone.
-    fn dust(&self, option: usize) -> f64 {
-        let gross = |i: usize| {
-            let totals = &self.options[i].absolute;
-            totals.pv_benefits.abs() + totals.pv_costs.abs()
-        };
-        1e-9 * (gross(option) + self.baseline().map_or(0.0, gross))
+    /// What an option is worth on the declared basis, and how far rounding may have moved that.
+    fn worth(&self, option: usize) -> Worth {
+        self.found.comparison.sides[0].standings[option].worth
     }
 
     /// Whether all options stand on one basis, from one base, with one timing.
@@ -205,7 +205,12 @@ impl Facts<'_> {
 pub fn brief(package: &Package, request: &BriefRequest, catalogue: &Catalogue) -> Result<Brief> {
     let mut problems = preflight(package)?;
     let book = Workbook::read(package)?;
-    let mut appraisal = resolve(package, &book, &Options { roles: &request.roles, basis: None })?;
+    let plan = PlanFile::part_of(request.plan.as_ref(), &book)?;
+    let mut appraisal = resolve(
+        package,
+        &book,
+        &Options { roles: &request.roles, plan: plan.as_ref(), ..Options::default() },
+    )?;
     problems.append(&mut appraisal.problems);
     let (outcomes, found) = value(&appraisal, catalogue)?;
     problems.extend(found);
@@ -262,6 +267,9 @@ fn sources(package: &Package, request: &BriefRequest) -> Vec<String> {
         env!("CARGO_PKG_VERSION"),
         words::plain(package.file_name())
     )];
+    if let Some(plan) = &request.plan {
+        texts.push(format!("Roles from the plan {}, SHA-256 {}.", words::plain(plan.name()), plan.sha256()));
+    }
     texts.extend(request.as_of.as_deref().map(|text| format!("As of {}.", words::plain(text))));
     texts.extend(request.by.as_deref().map(|text| format!("By {}.", words::plain(text))));
     texts

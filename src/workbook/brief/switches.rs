@@ -5,6 +5,7 @@ use hence_core::Parameter;
 use super::words::{count, money, parameter_value, times};
 use super::{Block, Facts, Section, Table, words};
 use crate::compare::{Change, Entry, Moved, Side, Why, heading};
+use crate::ranking::{Worth, level};
 
 /// Streams that are listed, at most.
 const MOST_STREAMS: usize = 6;
@@ -83,7 +84,7 @@ fn no_change(
 ) -> String {
     let comparison = &facts.found.comparison;
     let best = match (parameter, &comparison.ramsey) {
-        (Parameter::Rate, _) => facts.flat.always_best(),
+        (Parameter::Rate, _) => facts.flat.always_best,
         (_, Some(basis)) => {
             comparison.sides.iter().find(|side| side.basis == *basis).and_then(|side| side.best)
         }
@@ -124,6 +125,9 @@ fn searched_not(entry: &Entry) -> bool {
 /// "A has the highest net present value below 2%, B from 2% to 5%, C above 5%".
 fn chain(facts: &Facts<'_>, parameter: Parameter, changes: &[&Change]) -> String {
     let value = |change: &Change| parameter_value(parameter, change.at);
+    let names =
+        |options: &[usize]| words::list(&options.iter().map(|&i| facts.name(i)).collect::<Vec<_>>(), "and");
+    let has = |options: &[usize]| if options.len() == 1 { "has" } else { "have" };
     let unbroken = changes.windows(2).all(|pair| pair[0].to == pair[1].from);
     if !unbroken {
         let parts: Vec<String> = changes
@@ -131,24 +135,25 @@ fn chain(facts: &Facts<'_>, parameter: Parameter, changes: &[&Change]) -> String
             .map(|change| {
                 format!(
                     "{} just below {} and {} just above",
-                    facts.name(change.from),
+                    names(&change.from),
                     value(change),
-                    facts.name(change.to)
+                    names(&change.to)
                 )
             })
             .collect();
         return format!("the highest net present value is that of {}", parts.join("; "));
     }
     let mut text = format!(
-        "{} has the highest net present value below {}",
-        facts.name(changes[0].from),
+        "{} {} the highest net present value below {}",
+        names(&changes[0].from),
+        has(&changes[0].from),
         value(changes[0])
     );
     for pair in changes.windows(2) {
-        text.push_str(&format!(", {} from {} to {}", facts.name(pair[0].to), value(pair[0]), value(pair[1])));
+        text.push_str(&format!(", {} from {} to {}", names(&pair[0].to), value(pair[0]), value(pair[1])));
     }
     if let Some(last) = changes.last() {
-        text.push_str(&format!(", {} above {}", facts.name(last.to), value(last)));
+        text.push_str(&format!(", {} above {}", names(&last.to), value(last)));
     }
     text
 }
@@ -192,21 +197,26 @@ fn zero_rate(facts: &Facts<'_>) -> Option<String> {
 
 /// Which option is highest with every rate of the basis a point lower or higher.
 fn shifted(facts: &Facts<'_>) -> Option<String> {
-    let tell = |by: f64, npv: &[f64]| {
-        let most = npv.iter().copied().fold(f64::NEG_INFINITY, f64::max);
-        let best: Vec<String> = (0..npv.len()).filter(|&i| npv[i] == most).map(|i| facts.name(i)).collect();
+    let tell = |by: f64, worths: &[Worth]| {
+        let level = level(worths);
+        let most = level.first().map_or(0.0, |&i| worths[i].npv);
+        let best: Vec<String> = level.iter().map(|&i| facts.name(i)).collect();
         let way = if by < 0.0 { "lower" } else { "higher" };
         let points = parameter_value(Parameter::Rate, by.abs());
         let points = points.trim_end_matches('%');
         let unit = if points == "1" { "point" } else { "points" };
         let highest =
-            if npv.len() > 1 { "the highest net present value is" } else { "the net present value is" };
+            if worths.len() > 1 { "the highest net present value is" } else { "the net present value is" };
         let whose =
-            if npv.len() > 1 { format!(", that of {}", words::list(&best, "and")) } else { String::new() };
+            if worths.len() > 1 { format!(", that of {}", words::list(&best, "and")) } else { String::new() };
         format!("{points} {unit} {way}, {highest} {}{whose}", money(most))
     };
-    let told: Vec<String> =
-        facts.found.shifted.iter().filter_map(|(by, npv)| npv.as_ref().map(|npv| tell(*by, npv))).collect();
+    let told: Vec<String> = facts
+        .found
+        .shifted
+        .iter()
+        .filter_map(|(by, worths)| worths.as_ref().map(|worths| tell(*by, worths)))
+        .collect();
     (!told.is_empty()).then(|| format!("With every rate of the basis {}.", told.join("; ")))
 }
 /// The schedule that the declared one's body wants run beside it, and whether the order of the options changes.

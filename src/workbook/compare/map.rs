@@ -1,12 +1,12 @@
 //! A map over two parts of a Ramsey rate: which option is best where, and where each is worth nothing.
 
-use hence_core::{Curve, ErrorKind, Parameter, Spec, Tail, Where, dot, sum, switching_values};
+use hence_core::{Curve, ErrorKind, Parameter, Spec, Tail, Where, switching_values};
 
 use super::Valued;
-use super::search::best_of;
 use crate::clock::base_year;
 use crate::dated::Flows;
 use crate::problem::{Place, Problem, Result};
+use crate::ranking::{Worth, best, over};
 
 /// Points across and up.
 const ACROSS: usize = 81;
@@ -25,9 +25,9 @@ pub struct Map {
     pub ys: Vec<f64>,
     /// Where the basis itself stands.
     pub here: (f64, f64),
-    /// By option, then up, then across: the net present value, over the baseline where there is one; none where no curve
-    /// has those parts, or a value has no end.
-    pub npv: Vec<Vec<Vec<Option<f64>>>>,
+    /// By option, then up, then across: what it is worth, over the baseline where there is one; none where no curve has
+    /// those parts, or a value has no end.
+    pub worth: Vec<Vec<Vec<Option<Worth>>>>,
     /// Where the zero lines run, by rows of the map.
     pub zero: Vec<ZeroRow>,
 }
@@ -62,32 +62,37 @@ impl Map {
                 .into());
         };
         let (xs, ys) = (points(Parameter::Preference, here.0, ACROSS), points(up, here.1, UP));
-        let mut npv = vec![vec![vec![None; xs.len()]; ys.len()]; valued.outcomes.len()];
+        let mut worth = vec![vec![vec![None; xs.len()]; ys.len()]; valued.outcomes.len()];
         for (j, &y) in ys.iter().enumerate() {
             for (i, &x) in xs.iter().enumerate() {
                 let change = |spec: &Spec| up.at(&Parameter::Preference.at(spec, x)?, y);
                 if let Some(values) = worth_of_all(valued, &change) {
                     for (option, value) in values.into_iter().enumerate() {
-                        npv[option][j][i] = Some(value);
+                        worth[option][j][i] = Some(value);
                     }
                 }
             }
         }
         let rows = (0..ys.len()).step_by(ZERO_ROWS);
         let zero = rows.map(|j| zero_row(valued, up, &xs, (j, ys[j]))).collect();
-        Ok(Map { basis: valued.outcomes[0].basis.canonical(), up, xs, ys, here, npv, zero })
+        Ok(Map { basis: valued.outcomes[0].basis.canonical(), up, xs, ys, here, worth, zero })
+    }
+
+    /// The net present value of an option, up then across.
+    pub(super) fn npv(&self, option: usize) -> Vec<Vec<Option<f64>>> {
+        let row = |row: &Vec<Option<Worth>>| row.iter().map(|worth| worth.map(|worth| worth.npv)).collect();
+        self.worth[option].iter().map(row).collect()
     }
 
     /// The values of all options at a point.
-    pub fn at(&self, i: usize, j: usize) -> Option<Vec<f64>> {
-        self.npv.iter().map(|rows| rows[j][i]).collect()
+    pub fn at(&self, i: usize, j: usize) -> Option<Vec<Worth>> {
+        self.worth.iter().map(|rows| rows[j][i]).collect()
     }
 
     /// The best option at a point, none where several are; and whether even the best is worth less than nothing.
     pub fn best(&self, i: usize, j: usize) -> Option<(Option<usize>, bool)> {
         let values = self.at(i, j)?;
-        let most = values.iter().copied().fold(f64::NEG_INFINITY, f64::max);
-        Some((best_of(&values), most < 0.0))
+        Some((best(&values), values.iter().all(|value| value.sign() < 0)))
     }
 
     /// What a point shows: the letter of the best option, in brackets where it is worth less than nothing; `=` where several
@@ -164,7 +169,7 @@ fn zero_row(valued: &Valued, up: Parameter, xs: &[f64], (j, y): (usize, f64)) ->
 }
 
 /// What every option is worth with its spec changed, over the baseline where there is one.
-fn worth_of_all(valued: &Valued, change: &dyn Fn(&Spec) -> Option<Spec>) -> Option<Vec<f64>> {
+fn worth_of_all(valued: &Valued, change: &dyn Fn(&Spec) -> Option<Spec>) -> Option<Vec<Worth>> {
     let mut values = Vec::with_capacity(valued.outcomes.len());
     for (choice, outcome) in valued.appraisal.choices.iter().zip(&valued.outcomes) {
         let length = Some(outcome.length);
@@ -172,23 +177,20 @@ fn worth_of_all(valued: &Valued, change: &dyn Fn(&Spec) -> Option<Spec>) -> Opti
         let curve = change(outcome.basis.spec())?.curve(&at).ok()?;
         values.push(worth(&outcome.dated, &curve)?);
     }
-    if let Some(baseline) = valued.appraisal.baseline {
-        let base = values[baseline];
-        values.iter_mut().for_each(|value| *value -= base);
-    }
-    values.iter().all(|value| value.is_finite()).then_some(values)
+    let values = over(values, valued.appraisal.baseline);
+    values.iter().all(|value| value.npv.is_finite()).then_some(values)
 }
 
-/// The present value of dated flows.
-fn worth(flows: &Flows, curve: &Curve) -> Option<f64> {
+/// The present value of dated flows, and their size.
+fn worth(flows: &Flows, curve: &Curve) -> Option<Worth> {
     let mut factors = vec![0.0; flows.offsets.len()];
     curve.factors(&flows.offsets, &mut factors).ok()?;
-    let mut terms = vec![dot(&factors, &flows.flows)];
+    let mut terms: Vec<f64> = factors.iter().zip(&flows.flows).map(|(factor, flow)| factor * flow).collect();
     for perpetual in &flows.perpetual {
         let tail = Tail { growth: perpetual.growth, every: perpetual.every, to: None };
         terms.push(tail.present_value(curve, perpetual.start, perpetual.flow, None).ok()?);
     }
-    Some(sum(&terms))
+    Some(Worth::of_streams(&terms))
 }
 
 #[cfg(test)]

@@ -8,6 +8,7 @@ use super::Comparison;
 use super::map::{Map, option_letter};
 use super::search::Moved;
 use super::tables::shown;
+use crate::ranking::Worth;
 
 /// The plot within the picture, in points.
 const LEFT: f64 = 80.0;
@@ -27,7 +28,7 @@ const DASHES: [&str; 6] = ["none", "10 4", "2 4", "10 4 2 4", "16 6", "5 5"];
 
 /// The picture, the same bytes every time.
 pub fn picture(comparison: &Comparison, map: &Map) -> String {
-    let lines = comparison.options.len() as f64 + 2.0;
+    let lines = comparison.options.len() as f64 + 2.5;
     let (width, height) = (LEFT + WIDTH + 40.0, TOP + HEIGHT + 70.0 + LINE * lines);
     let mut svg = format!(
         "<svg xmlns=\"http://www.w3.org/2000/svg\" width=\"{width}\" height=\"{height}\" viewBox=\"0 0 {width} {height}\" \
@@ -44,6 +45,7 @@ pub fn picture(comparison: &Comparison, map: &Map) -> String {
     text(&mut svg, LEFT, 43.0, "start", "", &map.basis);
     let frame = Frame { map };
     frame.regions(&mut svg);
+    frame.borders(&mut svg);
     frame.zero_lines(&mut svg);
     frame.axes(&mut svg);
     frame.letters(&mut svg);
@@ -121,7 +123,8 @@ impl Frame<'_> {
         let share = match (values, bests) {
             ((Some(a), Some(b)), (Some((Some(p), _)), Some((Some(q), _)))) => {
                 // The same option on both sides of zero, or two that swap.
-                let gap = |values: &[f64]| if p == q { values[p] } else { values[p] - values[q] };
+                let npv = |values: &[Worth], option: usize| values[option].npv;
+                let gap = |at: &[Worth]| if p == q { npv(at, p) } else { npv(at, p) - npv(at, q) };
                 let (left, right) = (gap(&a), gap(&b));
                 if left == right { 0.5 } else { left / (left - right) }
             }
@@ -130,16 +133,48 @@ impl Frame<'_> {
         i as f64 + share.clamp(0.0, 1.0)
     }
 
-    /// Where an option's value is zero: straight within each cell of the grid, between points of different sign.
-    fn zero_lines(&self, svg: &mut String) {
-        for (option, npv) in self.map.npv.iter().enumerate() {
-            let mut path = String::new();
-            for line in chained(&pieces(npv)) {
-                for (k, point) in line.iter().enumerate() {
-                    let letter = if k == 0 { 'M' } else { 'L' };
-                    let _ = write!(path, "{letter}{:.2} {:.2}", self.x(point.0), self.y(point.1));
+    /// A thin line where the best option changes, so that regions are told apart without colour.
+    fn borders(&self, svg: &mut String) {
+        let (columns, rows) = (self.map.xs.len(), self.map.ys.len());
+        let best: Vec<Vec<Option<usize>>> = (0..rows)
+            .map(|j| (0..columns).map(|i| self.map.best(i, j).and_then(|best| best.0)).collect())
+            .collect();
+        for q in 1..self.map.worth.len() {
+            for p in 0..q {
+                let gap = |i: usize, j: usize| {
+                    let own = best[j][i].is_some_and(|best| best == p || best == q);
+                    let values = self.map.at(i, j).filter(|_| own)?;
+                    Some(values[p].npv - values[q].npv)
+                };
+                let gaps: Vec<Vec<Option<f64>>> =
+                    (0..rows).map(|j| (0..columns).map(|i| gap(i, j)).collect()).collect();
+                let path = self.path(&gaps);
+                if !path.is_empty() {
+                    let _ = writeln!(
+                        svg,
+                        "<path d=\"{path}\" fill=\"none\" stroke=\"#606060\" stroke-width=\"0.8\"/>"
+                    );
                 }
             }
+        }
+    }
+
+    /// The zero line of a grid as a path.
+    fn path(&self, grid: &[Vec<Option<f64>>]) -> String {
+        let mut path = String::new();
+        for line in chained(&pieces(grid)) {
+            for (k, point) in line.iter().enumerate() {
+                let letter = if k == 0 { 'M' } else { 'L' };
+                let _ = write!(path, "{letter}{:.2} {:.2}", self.x(point.0), self.y(point.1));
+            }
+        }
+        path
+    }
+
+    /// Where an option's value is zero: straight within each cell of the grid, between points of different sign.
+    fn zero_lines(&self, svg: &mut String) {
+        for option in 0..self.map.worth.len() {
+            let path = self.path(&self.map.npv(option));
             if !path.is_empty() {
                 let dash = DASHES[option % DASHES.len()];
                 let _ = writeln!(
@@ -273,7 +308,7 @@ fn legend(svg: &mut String, comparison: &Comparison, map: &Map) {
         );
         text(svg, LEFT + 13.0, y, "middle", "fill=\"#404040\"", &option_letter(option));
         text(svg, LEFT + 36.0, y, "start", "", name);
-        if !pieces(&map.npv[option]).is_empty() {
+        if !pieces(&map.npv(option)).is_empty() {
             let dash = DASHES[option % DASHES.len()];
             let (from, to) = (LEFT + 330.0, LEFT + 380.0);
             let line = y - 4.5;
@@ -289,9 +324,13 @@ fn legend(svg: &mut String, comparison: &Comparison, map: &Map) {
         }
         y += LINE;
     }
-    let words =
-        "In brackets and dark: even the best is worth less than nothing. The cross: the basis as stated.";
-    text(svg, LEFT, y, "start", "", words);
+    for words in [
+        "Thin line: another option becomes the best. Cross: the basis as stated.",
+        "In brackets and dark: even the best is worth less than nothing.",
+    ] {
+        text(svg, LEFT, y, "start", "", words);
+        y += LINE;
+    }
 }
 
 #[cfg(test)]

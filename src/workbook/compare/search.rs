@@ -5,10 +5,12 @@ use std::fmt;
 use hence_core::{ErrorKind, Parameter, Spec, Switching, Where, switching_multiplier, switching_values};
 
 use super::Valued;
+use super::changes::{Change, best_changes};
 use crate::appraisal::{Choice, Stream};
 use crate::clock::base_year;
 use crate::outcome::ChoiceOutcome;
-use crate::valuation::{npv_on, side};
+use crate::ranking::Worth;
+use crate::valuation::{side, worth_on};
 
 /// The multipliers of a stream that are stated.
 pub const MULTIPLIERS: (f64, f64) = (-1000.0, 1000.0);
@@ -48,19 +50,6 @@ pub struct Entry {
     pub interval: (f64, f64),
     /// Why there is no value, where that needs saying.
     pub note: Option<String>,
-}
-
-/// A value of a parameter at which another option becomes the best.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Change {
-    /// What moves.
-    pub parameter: Parameter,
-    /// The value.
-    pub at: f64,
-    /// The best option below it.
-    pub from: usize,
-    /// The best option above it.
-    pub to: usize,
 }
 
 /// The first basis that is stated by preference, elasticity and growth, and is that of all options.
@@ -226,53 +215,16 @@ fn multiplier(declared: &Valued, option: usize, other: Option<usize>, stream: us
     }
 }
 
-/// Where the best option changes: between the values at which any two swap, their order is fixed.
-fn best_changes(valued: &Valued, entries: &[Entry], parameter: Parameter) -> Vec<Change> {
-    let moved = Moved::Parameter(parameter);
-    let pairs = entries.iter().filter(|entry| entry.moved == moved && entry.against.is_some());
-    let (mut values, mut low, mut high) = (Vec::new(), parameter.interval().0, parameter.interval().1);
-    for entry in pairs {
-        values.extend(entry.values.iter().copied());
-        (low, high) = (low.max(entry.interval.0), high.min(entry.interval.1));
-    }
-    values.retain(|x| *x > low && *x < high);
-    values.sort_by(f64::total_cmp);
-    values.dedup();
-    let ends: Vec<f64> = [low].into_iter().chain(values.iter().copied()).chain([high]).collect();
-    let best: Vec<Option<usize>> =
-        ends.windows(2).map(|pair| best_at(valued, parameter, 0.5 * (pair[0] + pair[1]))).collect();
-    let change = |(i, &at): (usize, &f64)| match (best[i], best[i + 1]) {
-        (Some(from), Some(to)) if from != to => Some(Change { parameter, at, from, to }),
-        _ => None,
-    };
-    values.iter().enumerate().filter_map(change).collect()
-}
-
-/// The best option with a parameter of the basis at a value; none where several are, or where no curve has that value.
-fn best_at(valued: &Valued, parameter: Parameter, x: f64) -> Option<usize> {
-    let npv = npv_at(valued, &|spec| parameter.at(spec, x))?;
-    best_of(&npv)
-}
-
-/// The index of the largest; none where several are.
-pub(super) fn best_of(npv: &[f64]) -> Option<usize> {
-    let most = npv.iter().copied().fold(f64::NEG_INFINITY, f64::max);
-    let mut first = npv.iter().enumerate().filter(|(_, npv)| **npv == most).map(|(i, _)| i);
-    match (first.next(), first.next()) {
-        (Some(i), None) => Some(i),
-        _ => None,
-    }
-}
-
-/// Net present values as the options stand, their spec changed.
-pub(super) fn npv_at(valued: &Valued, change: &dyn Fn(&Spec) -> Option<Spec>) -> Option<Vec<f64>> {
+/// What the options are worth as they stand, their spec changed.
+pub(super) fn worths_at(valued: &Valued, change: &dyn Fn(&Spec) -> Option<Spec>) -> Option<Vec<Worth>> {
     let choices = valued.appraisal.choices.iter().zip(&valued.outcomes);
     choices
         .map(|(choice, outcome): (&Choice, &ChoiceOutcome)| {
             let length = Some(outcome.length);
             let at = Where { base_year: base_year(&choice.base.value), length };
             let curve = change(outcome.basis.spec())?.curve(&at).ok()?;
-            npv_on(&valued.appraisal, choice, outcome, &curve).ok().filter(|npv| npv.is_finite())
+            let worth = worth_on(&valued.appraisal, choice, outcome, &curve).ok();
+            worth.filter(|worth| worth.npv.is_finite())
         })
         .collect()
 }

@@ -2,8 +2,9 @@
 
 use hence_core::{CAUTION, Parameter};
 
+use super::changes::Change;
 use super::map::{Map, option_letter};
-use super::search::{Change, Entry, Moved};
+use super::search::{Entry, Moved};
 use super::{Comparison, Side};
 use crate::package::Package;
 use crate::problem::Result;
@@ -19,7 +20,7 @@ const LAST: u32 = 6;
 pub fn book(package: &Package, comparison: &Comparison) -> Result<Vec<u8>> {
     let mut sheets = vec![sides(package, comparison), switching(comparison)];
     sheets.extend(comparison.map.as_ref().map(|map| letters(comparison, map)));
-    writer::workbook(&sheets)
+    writer::workbook(&sheets, &[])
 }
 
 /// Every so many points of a map, across and up, stand on its sheet.
@@ -178,8 +179,8 @@ fn switching(comparison: &Comparison) -> Sheet {
         row += 1;
         sheet.text(row, 0, Style::Text, change.parameter.to_string());
         put(&mut sheet, row, 3, &Moved::Parameter(change.parameter), change.at);
-        sheet.text(row, 1, Style::Wrapped, format!("below: {}", comparison.options[change.from]));
-        sheet.text(row, 2, Style::Wrapped, format!("above: {}", comparison.options[change.to]));
+        sheet.text(row, 1, Style::Wrapped, format!("below: {}", names(comparison, &change.from)));
+        sheet.text(row, 2, Style::Wrapped, format!("above: {}", names(comparison, &change.to)));
     }
     if comparison.changes.is_empty() {
         row += 1;
@@ -208,7 +209,8 @@ fn switching(comparison: &Comparison) -> Sheet {
                 None => sheet.text(row, 3, Style::Instead, "none"),
             }
             let (low, high) = entry.interval;
-            let text = format!("{} to {}", shown(&entry.moved, low), shown(&entry.moved, high));
+            // Apart from the number before it.
+            let text = format!("  {} to {}", shown(&entry.moved, low), shown(&entry.moved, high));
             sheet.text(row, 4, Style::Wrapped, text);
             sheet.text(row, 5, Style::Wrapped, remark(entry));
         }
@@ -265,10 +267,17 @@ pub fn remark(entry: &Entry) -> String {
 /// A change of the best option in words.
 pub fn change_words(comparison: &Comparison, change: &Change) -> String {
     format!(
-        "{} {}: below it {} is best, above it {}",
+        "{} {}: below it {} {} best, above it {}",
         change.parameter,
         shown(&Moved::Parameter(change.parameter), change.at),
-        comparison.options[change.from],
-        comparison.options[change.to]
+        names(comparison, &change.from),
+        if change.from.len() == 1 { "is" } else { "are" },
+        names(comparison, &change.to)
     )
+}
+
+/// The names of options that are equally good.
+fn names(comparison: &Comparison, options: &[usize]) -> String {
+    let names: Vec<&str> = options.iter().map(|i| comparison.options[*i].as_str()).collect();
+    names.join(" and ")
 }

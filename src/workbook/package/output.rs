@@ -6,6 +6,7 @@ use std::path::{Path, PathBuf};
 
 use flate2::Compression;
 use flate2::write::DeflateEncoder;
+use tempfile::NamedTempFile;
 
 use super::container::moved_record;
 use super::edit::edit_content_types;
@@ -197,13 +198,18 @@ fn too_large(error: &dyn std::fmt::Display) -> WorkbookError {
 ///
 /// **Errors**: `output-exists`, `cannot-write`.
 pub fn may_write(path: &Path, force: bool) -> Result<()> {
+    may_replace(path, force)?;
+    if folder_of(path).is_dir() { Ok(()) } else { Err(cannot_write(path, "its folder is not there")) }
+}
+
+/// As [`may_write`], where the folder may yet be made.
+pub(crate) fn may_replace(path: &Path, force: bool) -> Result<()> {
     match path.metadata() {
         Ok(there) if there.is_dir() => Err(cannot_write(path, "it is a folder")),
         // A device or a pipe would be replaced by a file, which is never what was meant.
         Ok(there) if !there.is_file() => Err(cannot_write(path, "it is no ordinary file")),
         // A link that leads nowhere is there too.
         _ if !force && path.symlink_metadata().is_ok() => Err(exists(path)),
-        _ if !folder_of(path).is_dir() => Err(cannot_write(path, "its folder is not there")),
         _ => Ok(()),
     }
 }
@@ -225,30 +231,89 @@ fn exists(path: &Path) -> WorkbookError {
 /// **Errors**: `output-exists`, `cannot-write`; no temporary file is left behind.
 pub fn write_atomically(path: &Path, bytes: &[u8], force: bool) -> Result<()> {
     may_write(path, force)?;
-    let failed = |e: std::io::Error| cannot_write(path, e);
-    let folder = folder_of(path);
-    let mut builder = tempfile::Builder::new();
-    builder.prefix(".hence-").suffix(".tmp");
-    #[cfg(unix)]
-    {
-        use std::os::unix::fs::PermissionsExt;
-        // As for any new file, what others may do is left to the user's mask.
-        builder.permissions(std::fs::Permissions::from_mode(0o666));
+    let mut file = Pending::beside(path)?;
+    file.write_all(bytes).map_err(|error| cannot_write(path, error))?;
+    file.commit(force)
+}
+
+/// How the names of temporary files begin and end.
+const TEMPORARY: (&str, &str) = (".hence-", ".tmp");
+
+/// A file that is being written, under another name until it is whole; taken away where it never is.
+///
+/// While its writer lives, it is locked, so that what a dead run left behind can be told from it.
+pub struct Pending {
+    path: PathBuf,
+    file: NamedTempFile,
+}
+
+impl Pending {
+    /// Begins a file beside its place.
+    ///
+    /// **Errors**: `cannot-write`.
+    pub fn beside(path: &Path) -> Result<Self> {
+        let mut builder = tempfile::Builder::new();
+        builder.prefix(TEMPORARY.0).suffix(TEMPORARY.1);
+        #[cfg(unix)]
+        {
+            use std::os::unix::fs::PermissionsExt;
+            // As for any new file, what others may do is left to the user's mask.
+            builder.permissions(std::fs::Permissions::from_mode(0o666));
+        }
+        let file = builder.tempfile_in(folder_of(path)).map_err(|error| cannot_write(path, error))?;
+        // A file system without locks loses nothing but the telling apart.
+        let _ = file.as_file().try_lock();
+        Ok(Pending { path: path.to_owned(), file })
     }
-    let mut file = builder.tempfile_in(&folder).map_err(failed)?;
-    file.write_all(bytes).map_err(failed)?;
-    file.as_file().sync_all().map_err(failed)?;
-    let renamed = if force { file.persist(path) } else { file.persist_noclobber(path) };
-    match renamed {
-        Err(e) if e.error.kind() == std::io::ErrorKind::AlreadyExists => return Err(exists(path)),
-        Err(e) => return Err(failed(e.error)),
-        Ok(_) => {}
+
+    /// That it could not be written to.
+    pub fn cannot_write(&self, why: std::io::Error) -> WorkbookError {
+        cannot_write(&self.path, why)
     }
-    // The rename itself is made durable where the system lets a folder be flushed.
-    if let Ok(folder) = std::fs::File::open(&folder) {
-        let _ = folder.sync_all();
+
+    /// Gives the file its name, once it is on the disk.
+    ///
+    /// **Errors**: as [`write_atomically`].
+    pub fn commit(self, force: bool) -> Result<()> {
+        let Pending { path, file } = self;
+        may_write(&path, force)?;
+        let failed = |error: std::io::Error| cannot_write(&path, error);
+        file.as_file().sync_all().map_err(failed)?;
+        let renamed = if force { file.persist(&path) } else { file.persist_noclobber(&path) };
+        match renamed {
+            Err(e) if e.error.kind() == std::io::ErrorKind::AlreadyExists => return Err(exists(&path)),
+            Err(e) => return Err(failed(e.error)),
+            Ok(_) => {}
+        }
+        // The rename itself is made durable where the system lets a folder be flushed.
+        if let Ok(folder) = std::fs::File::open(folder_of(&path)) {
+            let _ = folder.sync_all();
+        }
+        Ok(())
     }
-    Ok(())
+}
+
+impl Write for Pending {
+    fn write(&mut self, bytes: &[u8]) -> std::io::Result<usize> {
+        self.file.write(bytes)
+    }
+
+    fn flush(&mut self) -> std::io::Result<()> {
+        self.file.flush()
+    }
+}
+
+/// Takes away the temporary files that dead runs left in a folder; those of a run that lives are locked, and stay.
+pub fn clear_abandoned(folder: &Path) {
+    let Ok(entries) = std::fs::read_dir(folder) else { return };
+    for path in entries.flatten().map(|entry| entry.path()) {
+        let name = path.file_name().unwrap_or_default().to_string_lossy();
+        let ours = name.starts_with(TEMPORARY.0) && name.ends_with(TEMPORARY.1);
+        let is_file = path.symlink_metadata().is_ok_and(|there| there.is_file());
+        if ours && is_file && std::fs::File::open(&path).is_ok_and(|file| file.try_lock().is_ok()) {
+            let _ = std::fs::remove_file(&path);
+        }
+    }
 }
 
 fn folder_of(path: &Path) -> PathBuf {
@@ -258,20 +323,32 @@ fn folder_of(path: &Path) -> PathBuf {
     }
 }
 
-/// Whether two paths name one file, by links, case or another way of writing it. A path that is not
-/// there yet is compared by its folder and name.
-pub fn same_file(a: &Path, b: &Path) -> bool {
-    #[cfg(unix)]
-    {
-        use std::os::unix::fs::MetadataExt;
-        if let (Ok(a), Ok(b)) = (a.metadata(), b.metadata()) {
-            return (a.dev(), a.ino()) == (b.dev(), b.ino());
+/// What a path names, whatever links, case or ways of writing lead there. A path that is not there yet goes by its
+/// folder and name; one whose folder is not there, by how it is written.
+#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord)]
+pub enum Identity {
+    /// A file of the system, by device and number.
+    File(u64, u64),
+    /// By its real path.
+    Path(PathBuf),
+}
+
+impl Identity {
+    /// That of a path.
+    pub fn of(path: &Path) -> Self {
+        #[cfg(unix)]
+        {
+            use std::os::unix::fs::MetadataExt;
+            if let Ok(there) = path.metadata() {
+                return Identity::File(there.dev(), there.ino());
+            }
         }
+        let in_folder = || Some(folder_of(path).canonicalize().ok()?.join(path.file_name()?));
+        Identity::Path(path.canonicalize().ok().or_else(in_folder).unwrap_or_else(|| path.to_owned()))
     }
-    let real = |path: &Path| {
-        path.canonicalize()
-            .ok()
-            .or_else(|| Some(folder_of(path).canonicalize().ok()?.join(path.file_name()?)))
-    };
-    matches!((real(a), real(b)), (Some(a), Some(b)) if a == b)
+}
+
+/// Whether two paths name one file.
+pub fn same_file(a: &Path, b: &Path) -> bool {
+    Identity::of(a) == Identity::of(b)
 }

@@ -1,6 +1,6 @@
 //! The text of one cell element: rewritten, created, or given a formula of its own.
 
-use super::{Cached, CellWrite, MAX_FORMULA, MAX_TEXT, problem};
+use super::{Cached, CellWrite, MAX_FORMULA, MAX_TEXT, Settled, problem};
 use crate::problem::{Problem, Result};
 use crate::references::{Cell, MAX_COLUMNS, MAX_ROWS};
 use crate::splice::{Kind, Tokens, bad_xml, escape, prefix, with_attribute};
@@ -49,6 +49,9 @@ pub(super) fn refusal(at: Cell, write: &CellWrite) -> Option<Problem> {
             })
         }
         CellWrite::DropValue => None,
+        CellWrite::Result(Settled::Number(value)) => number(*value),
+        CellWrite::Result(Settled::Text(value) | Settled::Error(value)) => text("text", value, MAX_TEXT),
+        CellWrite::Result(Settled::Logical(_)) => None,
     }
 }
 
@@ -65,11 +68,21 @@ pub(super) fn written(raw: &str, prefix: &str, write: &CellWrite) -> Result<Stri
     tag = with_attribute(&tag, "vm", None)?;
     let mut content = String::new();
     match write {
-        CellWrite::DropValue => content.push_str(parts.formula),
+        CellWrite::DropValue | CellWrite::Result(_) => content.push_str(parts.formula),
         _ => tag = with_attribute(&tag, "cm", None)?,
     }
     match write {
         CellWrite::DropValue => {}
+        CellWrite::Result(settled) => {
+            let (kind, text) = match settled {
+                Settled::Number(number) => (None, shortest(*number)),
+                Settled::Text(text) => (Some("str"), escaped(&coded(text))?),
+                Settled::Logical(truth) => (Some("b"), u8::from(*truth).to_string()),
+                Settled::Error(error) => (Some("e"), escaped(error)?),
+            };
+            tag = with_attribute(&tag, "t", kind)?;
+            content += &value(prefix, &text);
+        }
         CellWrite::Number(number) => content = value(prefix, &shortest(*number)),
         CellWrite::Text(text) => {
             tag = with_attribute(&tag, "t", Some("inlineStr"))?;

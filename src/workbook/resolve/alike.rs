@@ -38,10 +38,14 @@ pub(super) fn tell(context: &mut Context, built: &Built, named: &BTreeSet<String
                 Place::area(&at),
                 format!("is laid out like `{of}`, which is valued, and has no names: it is not valued"),
             )
-            .hint(format!(
-                "if it is an option too, define the names of `{of}` again with this sheet as their scope, or add --role \
-                 ROLE__{option}=CELLS for each of them"
-            )),
+            .hint(if context.planned {
+                "if it is an option too, add it to the plan, beside the sheet that it is like".to_owned()
+            } else {
+                format!(
+                    "if it is an option too, define the names of `{of}` again with this sheet as their scope, or add \
+                     --role ROLE__{option}=CELLS for each of them"
+                )
+            }),
         );
     }
 }

@@ -84,6 +84,9 @@ pub(super) fn numbers(context: &mut Context, named: &Named) -> Option<Numbers> {
 
 /// The one cell of a role that takes one, or nothing after a report. What it states is kept for the audit.
 pub(super) fn single(context: &mut Context, named: &Named) -> Option<ReadCell> {
+    if let Some(value) = &named.stated {
+        return Some(ReadCell { value: value.clone(), ..ReadCell::default() });
+    }
     if named.at.range.first != named.at.range.last {
         context.report(
             Problem::error(
@@ -142,7 +145,7 @@ pub(super) fn shown(text: &str) -> String {
 }
 
 /// The number that a person would read in a text: `1,200`, `£3.5`, `(4)`, `20%`, `7 `.
-pub(super) fn text_as_number(text: &str) -> Option<f64> {
+pub(crate) fn text_as_number(text: &str) -> Option<f64> {
     let text = text.trim().trim_start_matches('\'');
     let bracketed = text.strip_prefix('(').and_then(|rest| rest.strip_suffix(')'));
     let (text, sign) = bracketed.map_or((text, 1.0), |inner| (inner, -1.0));

@@ -3,25 +3,28 @@
 use std::collections::BTreeMap;
 
 use crate::appraisal::{Axis, Choice, Stream, StreamKind};
+use crate::decide::Rule;
 use crate::problem::{Place, Problem};
 use crate::reading::Value;
 use crate::references::Area;
-use crate::roles::{ROLES, Role, key};
+use crate::roles::{PREFIX, ROLES, Role, key};
 
+use super::cells::shown;
 use super::find::Named;
 use super::groups::{Group, Split, names_of};
-use super::{Context, counted, prices, settings, spans, streams, targets, texts, welfare, years};
+use super::{Context, Options, counted, prices, settings, spans, streams, targets, texts, welfare, years};
 
 /// The options, and what they share.
 pub(super) struct Built {
     pub axes: Vec<Axis>,
     pub choices: Vec<Choice>,
     pub baseline: Option<usize>,
+    pub decide: Rule,
 }
 
 /// Builds every option; what cannot be built is reported.
-pub(super) fn build(context: &mut Context, split: &Split, told: Option<&str>) -> Built {
-    let mut built = Built { axes: Vec::new(), choices: Vec::new(), baseline: None };
+pub(super) fn build(context: &mut Context, split: &Split, told: &Options) -> Built {
+    let mut built = Built { axes: Vec::new(), choices: Vec::new(), baseline: None, decide: Rule::default() };
     report_missing(context, split, told);
     let mut read: BTreeMap<(Area, Option<Area>), Option<usize>> = BTreeMap::new();
     for group in &split.groups {
@@ -49,6 +52,7 @@ pub(super) fn build(context: &mut Context, split: &Split, told: Option<&str>) ->
         targets::add_shared(context, split, &mut built.choices, &built.axes);
         check_settings(context, split, &built.choices);
         built.baseline = baseline(context, split);
+        built.decide = decide(context, split);
         check_flows(context, split, &built.choices);
     }
     for choice in &built.choices {
@@ -64,12 +68,12 @@ fn choice(
     group: &Group,
     axis: &Axis,
     index: usize,
-    told: Option<&str>,
+    told: &Options,
 ) -> Option<Choice> {
-    let base = years::base(context, split.of(group, Role::Base), axis);
-    let basis = settings::basis(context, split.of(group, Role::Basis), told);
+    let base = years::base(context, split.of(group, Role::Base), told.base, axis);
+    let basis = settings::basis(context, split.of(group, Role::Basis), told.basis);
     let timing = split.of(group, Role::Timing).and_then(|named| settings::timing(context, named));
-    let prices = prices::prices(context, split, group, axis);
+    let prices = prices::prices(context, split, group, told.prices, axis);
     let streams = streams::streams(context, split, group, axis);
     let welfare = welfare::welfare(context, split, group, axis, &streams);
     let effects = streams::effects(context, split, group, axis);
@@ -111,22 +115,26 @@ fn years_of<'s>(context: &mut Context, split: &'s Split, group: &'s Group) -> Op
 }
 
 /// What the workbook does not say at all, in one problem with how to say it.
-fn report_missing(context: &mut Context, split: &Split, told: Option<&str>) {
+fn report_missing(context: &mut Context, split: &Split, told: &Options) {
+    let lost = context.lost.clone();
     let all = || split.groups.iter().flat_map(|group| &group.named).chain(&split.shared);
-    let has = |test: &dyn Fn(Role) -> bool| all().any(|named| test(named.name.role));
+    let roles = || all().map(|named| named.name.role).chain(lost.iter().copied());
+    let has = |test: &dyn Fn(Role) -> bool| roles().any(test);
     let streams = has(&Role::is_stream);
     let mut lacks = Lacks::default();
     lacks.add(has(&|role| matches!(role, Role::Years | Role::Offsets)), "years", "hence_years");
     lacks.add(streams, "stream of flows", "hence_cost_works");
-    lacks.add(has(&|role| role == Role::Basis) || told.is_some(), "basis", "hence_basis");
+    lacks.add(has(&|role| role == Role::Basis) || told.basis.is_some(), "basis", "hence_basis");
     lacks.add(has(&Role::is_output), "range to fill", "hence_npv");
-    if let Some(problem) = lacks.problem(Place::default(), "the workbook") {
+    let planned = context.planned;
+    if let Some(problem) = lacks.problem(Place::default(), "the workbook", planned) {
         context.report(problem);
         return;
     }
+    let among = |role: Role| lost.contains(&role);
     for group in &split.groups {
         let place = || {
-            let first = group.named.first();
+            let first = group.named.iter().find(|named| named.stated.is_none());
             first.map_or_else(
                 || Place::name(&group.name),
                 |named| Place { sheet: Some(named.at.sheet.clone()), ..Place::name(&group.name) },
@@ -134,19 +142,24 @@ fn report_missing(context: &mut Context, split: &Split, told: Option<&str>) {
         };
         let shared_stream = split.shared.iter().any(|named| named.name.role.is_stream());
         let mut lacks = Lacks::default();
-        let dated = split.of(group, Role::Years).is_some();
+        let dated = split.of(group, Role::Years).is_some() || among(Role::Years);
         lacks.add(dated || split.of(group, Role::Offsets).is_some(), "years", "hence_years");
         lacks.add(
-            shared_stream || group.named.iter().any(|named| named.name.role.is_stream()),
+            shared_stream
+                || lost.iter().any(|role| role.is_stream())
+                || group.named.iter().any(|named| named.name.role.is_stream()),
             "stream of flows",
             &format!("hence_cost_works__{}", key(&group.name).replace(' ', "_")),
         );
-        lacks.add(split.of(group, Role::Basis).is_some() || told.is_some(), "basis", "hence_basis");
-        if let Some(problem) = lacks.problem(place(), &format!("the option `{}`", group.name)) {
+        let basis = split.of(group, Role::Basis).is_some() || told.basis.is_some();
+        lacks.add(basis || among(Role::Basis), "basis", "hence_basis");
+        if let Some(problem) = lacks.problem(place(), &format!("the option `{}`", group.name), planned) {
             context.report(problem);
         }
         if let Some(years) = split.of(group, Role::Years)
             && split.of(group, Role::Base).is_none()
+            && !among(Role::Base)
+            && told.base.is_none()
             && needs_base(context, years)
         {
             context.report(
@@ -155,7 +168,12 @@ fn report_missing(context: &mut Context, split: &Split, told: Option<&str>) {
                     place(),
                     format!("the option `{}` has no base year", group.name),
                 )
-                .hint("enter the year to which values are discounted in a cell, and name it hence_base"),
+                .hint(if planned {
+                    "add the year to which values are discounted to the plan: base = 2026 below [settings], or its cell below \
+                     [roles]"
+                } else {
+                    "enter the year to which values are discounted in a cell, and name it hence_base"
+                }),
             );
         }
     }
@@ -183,19 +201,29 @@ impl Lacks {
         }
     }
 
-    fn problem(self, place: Place, whose: &str) -> Option<Problem> {
+    fn problem(self, place: Place, whose: &str, planned: bool) -> Option<Problem> {
         if self.what.is_empty() {
             return None;
         }
-        let role = self.names[0].trim_start_matches("hence_").split("__").next().unwrap_or_default();
-        Some(
-            Problem::error("missing-role", place, format!("{whose} has no {}", self.what.join(", no ")))
-                .hint(format!(
-                    "select the cells and type {} into the Name Box; or give them with --role, as --role \
+        let problem =
+            Problem::error("missing-role", place, format!("{whose} has no {}", self.what.join(", no ")));
+        let roles = self
+            .names
+            .iter()
+            .map(|name| name.trim_start_matches(PREFIX).split("__").next().unwrap_or_default().to_owned());
+        let roles: Vec<String> = roles.collect();
+        if planned {
+            let roles = roles.join(", ");
+            return Some(problem.hint(format!(
+                "add {roles} to the plan, with their cells; `hence plan BOOK` proposes a plan"
+            )));
+        }
+        let role = &roles[0];
+        Some(problem.hint(format!(
+            "select the cells and type {} into the Name Box; or give them with --role, as --role \
                  {role}=Sheet1!C3:L3; `hence start FILE` makes a ready-named workbook",
-                    self.names.join(", ")
-                )),
-        )
+            self.names.join(", ")
+        )))
     }
 }
 
@@ -214,7 +242,7 @@ fn budget(context: &mut Context, split: &Split, group: &Group, choice: &Choice) 
             None => context.report(
                 Problem::error(
                     "unknown-stream",
-                    counted::place(&named.at, cell, &named.from),
+                    named.cell(cell),
                     format!("`{text}` is no cost of the option `{}`", choice.name),
                 )
                 .hint(format!("its costs are {}", names_of_kind(choice, |kind| kind == StreamKind::Cost))),
@@ -319,12 +347,32 @@ fn check_settings(context: &mut Context, split: &Split, choices: &[Choice]) {
     }
 }
 
+/// A setting for all options, wherever it is named.
+fn for_all(split: &Split, role: Role) -> Option<&Named> {
+    let own = split.groups.iter().flat_map(|group| &group.named);
+    split.shared.iter().chain(own).find(|named| named.name.role == role)
+}
+
+/// What ranks the options.
+fn decide(context: &mut Context, split: &Split) -> Rule {
+    let Some(named) = for_all(split, Role::Decide) else { return Rule::default() };
+    let Some(text) = texts::text(context, named) else { return Rule::default() };
+    Rule::parse(&text).unwrap_or_else(|| {
+        context.report(
+            Problem::error(
+                "decide",
+                named.place(),
+                format!("`{}` is no rule that ranks options", shown(&text)),
+            )
+            .hint("write `npv`, `ratio` or `least cost`"),
+        );
+        Rule::default()
+    })
+}
+
 /// The option that the others are compared with.
 fn baseline(context: &mut Context, split: &Split) -> Option<usize> {
-    let named = split.shared.iter().find(|named| named.name.role == Role::Baseline);
-    let own =
-        split.groups.iter().flat_map(|group| &group.named).find(|named| named.name.role == Role::Baseline);
-    let named = named.or(own)?;
+    let named = for_all(split, Role::Baseline)?;
     let text = texts::text(context, named)?;
     let found = split.groups.iter().position(|group| key(&group.name) == key(&text));
     if found.is_none() {

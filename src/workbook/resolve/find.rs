@@ -2,15 +2,17 @@
 
 use crate::formulas::absolute;
 use crate::model::DefinedName;
+use crate::planfile::{Part, Planned};
 use crate::problem::{Place, Problem};
-use crate::reading::MAX_CELLS;
+use crate::reading::{MAX_CELLS, Value};
 use crate::references::{
-    Apart, Area, MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange, Token, parse_target, quote_sheet,
-    tokens,
+    Apart, Area, Cell, MAX_COLUMNS, MAX_ROWS, NameTarget, Range, SheetRange, Token, parse_target,
+    quote_sheet, tokens,
 };
 use crate::roles::{self, Role, RoleName, Way};
 
 use super::dynamic::cells_now;
+use super::planned::{belongs_to_all, disagreement, from_plan};
 use super::{Checked, Context};
 
 /// Pieces of one role, at most: formulas have to hold an address of each.
@@ -32,12 +34,56 @@ pub(super) struct Named {
     pub area: Area,
     /// The sheet that the name is scoped to.
     pub scope: Option<String>,
+    /// What it says, where a plan or the command line states it without a cell; `at` is then no place.
+    pub stated: Option<Value>,
+    /// The line of the plan that it comes from.
+    pub line: Option<u32>,
 }
 
 impl Named {
     /// Its cells, with the name in brackets.
     pub(super) fn place(&self) -> Place {
-        Place::cells(&self.at.sheet, self.at.range).called(&self.from)
+        match self.cells() {
+            Some(at) => Place::cells(&at.sheet, at.range).called(&self.from),
+            None => Place { line: self.line, ..Place::name(&self.from) },
+        }
+    }
+
+    /// Found at these cells, for the whole workbook.
+    pub(super) fn at(name: RoleName, from: String, area: Area) -> Self {
+        Named { name, from, at: area.hull(), area, scope: None, stated: None, line: None }
+    }
+
+    /// Its pieces; none where it is stated without cells.
+    pub(super) fn pieces(&self) -> impl Iterator<Item = SheetRange> + '_ {
+        self.area.pieces().filter(|_| self.stated.is_none())
+    }
+
+    /// Its cells; none where it is stated without one.
+    pub(super) fn cells(&self) -> Option<SheetRange> {
+        self.stated.is_none().then(|| self.at.clone())
+    }
+
+    /// One cell of its range, with the name in brackets.
+    pub(super) fn cell(&self, cell: Cell) -> Place {
+        match self.cells() {
+            Some(at) => Place::cells(&at.sheet, Range::cell(cell)).called(&self.from),
+            None => self.place(),
+        }
+    }
+
+    /// Stated by the command line: a number where the text is one.
+    pub(super) fn told(role: Role, from: &str, text: &str) -> Self {
+        let text = text.trim();
+        let value = text.parse().map_or_else(|_| Value::Text(text.to_owned()), Value::Number);
+        let name = RoleName { role, stream: None, option: None };
+        Named { stated: Some(value), ..Named::at(name, from.to_owned(), nowhere()) }
+    }
+
+    /// Stated by a plan in no cell.
+    pub(super) fn without_cell(planned: &Planned, value: Value) -> Self {
+        let (name, from) = (planned.name.clone(), planned.from.clone());
+        Named { stated: Some(value), line: Some(planned.line), ..Named::at(name, from, nowhere()) }
     }
 
     /// More cells than are read as one range.
@@ -46,8 +92,14 @@ impl Named {
     }
 }
 
-/// Every role of the workbook, those of the command line first.
-pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Named> {
+/// The place of what is stated in no cell.
+fn nowhere() -> Area {
+    Area::from(SheetRange::new("", Range::cell(Cell::new(0, 0))))
+}
+
+/// Every role of the workbook: those of the command line, those of the plan that it does not give, and the names that
+/// neither gives.
+pub(super) fn find(context: &mut Context, given: &[(String, String)], plan: Option<&Part>) -> Vec<Named> {
     let mut found = Vec::new();
     for (role, range) in given {
         match from_command_line(context, role, range) {
@@ -55,6 +107,21 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
             Err(problem) => context.report(*problem),
         }
     }
+    let typed = found.len();
+    for planned in plan.iter().flat_map(|plan| &plan.entries) {
+        if beaten(&found[..typed], &planned.name).is_some() {
+            continue;
+        }
+        match from_plan(context, planned) {
+            Ok(named) => found.push(named),
+            Err(problem) => {
+                context.lost.insert(planned.name.role);
+                context.report(*problem);
+            }
+        }
+    }
+    let several = plan.is_some_and(|plan| plan.appraisal.is_some());
+    let told = found.len();
     let book = context.book;
     for defined in &book.names {
         let Some(parsed) = roles::parse_name(&defined.name) else { continue };
@@ -66,15 +133,21 @@ pub(super) fn find(context: &mut Context, given: &[(String, String)]) -> Vec<Nam
                 continue;
             }
         };
-        if name.role.info().way == Way::Own || beaten(&found, &name, given.len()) {
+        if name.role.info().way == Way::Own || (several && !belongs_to_all(&name, defined)) {
             continue;
         }
-        match cells(context, defined) {
-            Ok(area) => {
+        let stronger = beaten(&found[..told], &name).map(|at| (at < typed, found[at].clone()));
+        if matches!(stronger, Some((true, _))) {
+            continue;
+        }
+        match (cells(context, defined), stronger) {
+            (Ok(area), None) => {
                 let (from, scope) = (defined.name.clone(), scope(context, defined));
-                found.push(Named { name, from, at: area.hull(), area, scope });
+                found.push(Named { scope, ..Named::at(name, from, area) });
             }
-            Err(problem) => context.report(*problem),
+            (Ok(area), Some((_, planned))) => disagreement(context, &planned, &defined.name, area),
+            (Err(problem), None) => context.report(*problem),
+            (Err(_), Some(_)) => {}
         }
     }
     let mut kept = Vec::new();
@@ -102,11 +175,11 @@ pub(super) fn scope(context: &Context, defined: &DefinedName) -> Option<String> 
     defined.scope.and_then(|index| context.book.sheets.get(index)).map(|sheet| sheet.name.clone())
 }
 
-/// Whether one of the first `count` (from the command line) has the same role, stream and option.
-fn beaten(found: &[Named], name: &RoleName, count: usize) -> bool {
+/// Which of the stronger ones has the same role, stream and option.
+fn beaten(stronger: &[Named], name: &RoleName) -> Option<usize> {
     let same =
         |a: &Option<String>, b: &Option<String>| a.as_deref().map(roles::key) == b.as_deref().map(roles::key);
-    found.iter().take(count).filter(|named| named.from.starts_with("--role")).any(|named| {
+    stronger.iter().position(|named| {
         named.name.role == name.role
             && same(&named.name.stream, &name.stream)
             && (named.name.option.is_none() || same(&named.name.option, &name.option))
@@ -123,8 +196,7 @@ fn from_command_line(context: &mut Context, role: &str, range: &str) -> Checked<
     if name.role.info().way == Way::Own {
         return Err(Problem::error("unknown-role", place, "is hence's own name and cannot be given").into());
     }
-    let area = located(context, place, range)?;
-    Ok(Named { name, from, at: area.hull(), area, scope: None })
+    Ok(Named::at(name, from, located(context, place, range)?))
 }
 
 /// The cells that a text such as `Sheet1!C7:F7`, `Table1[Works]`, or a defined name, stands for; `place` is where the text

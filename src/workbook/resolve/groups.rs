@@ -135,12 +135,12 @@ fn add(context: &mut Context, list: &mut Vec<Named>, named: Named) {
     });
     match twin {
         None => list.push(named),
-        Some(twin) if twin.at == named.at => {}
+        Some(twin) if (&twin.at, &twin.stated) == (&named.at, &named.stated) => {}
         Some(twin) => {
             let problem = Problem::error(
                 "duplicate-role",
                 named.place(),
-                format!("`{}` is also {} [{}]", named.name.words(), twin.at, twin.from),
+                format!("`{}` is also {}", named.name.words(), twin.place()),
             )
             .hint(
                 "keep one of the two names, or give each its option: two underscores and the option's name",
@@ -168,13 +168,15 @@ fn first_cell(context: &Context, named: &[Named]) -> Option<(usize, Cell)> {
     first(true).or_else(|| first(false))
 }
 
-/// Without options, the one there is bears the name of the sheet its streams stand on.
+/// Without options, the one there is bears the name of its appraisal, where there are several, else of the sheet its
+/// streams stand on.
 fn only_name(context: &Context, shared: &[Named]) -> String {
     let first = |streams: bool| {
         let wanted = shared.iter().filter(|named| !streams || named.name.role.is_stream());
         wanted.filter_map(|named| Some((context.book.sheet_index(&named.at.sheet)?, &named.at))).min()
     };
     let any = first(true).or_else(|| first(false)).map(|(_, at)| at.sheet.clone());
+    let any = context.appraisal.clone().or(any);
     any.or_else(|| context.book.sheets.first().map(|sheet| sheet.name.clone())).unwrap_or_default()
 }
 

@@ -9,6 +9,7 @@ mod coverage;
 mod dynamic;
 mod find;
 mod groups;
+mod planned;
 mod prices;
 mod report;
 mod series;
@@ -26,10 +27,13 @@ use std::rc::Rc;
 use crate::appraisal::{Appraisal, Setting};
 use crate::model::{SheetFacts, Workbook};
 use crate::package::Package;
+use crate::planfile::Part;
 use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
 use crate::reading::{Grid, ReadCell, Sheets};
 use crate::references::{Area, Cell, Range, SheetRange};
+use crate::roles::Role;
 
+pub(crate) use cells::text_as_number;
 pub(crate) use counted::sum_of;
 pub use report::{Found, NamesReport, names};
 pub use series::{SeriesGrowth, growth_of_series};
@@ -42,6 +46,12 @@ pub struct Options<'a> {
     pub roles: &'a [(String, String)],
     /// `--basis`: beats the workbook's.
     pub basis: Option<&'a str>,
+    /// `--base`: beats the workbook's.
+    pub base: Option<&'a str>,
+    /// `--prices`: beats the workbook's price basis.
+    pub prices: Option<&'a str>,
+    /// What a plan says: it beats names, and the command line beats it.
+    pub plan: Option<&'a Part>,
 }
 
 /// Reads what a workbook says of its appraisal.
@@ -57,16 +67,23 @@ pub struct Options<'a> {
 /// being filled.
 pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<Appraisal> {
     let mut context = Context::open(package, book)?;
-    let named = find::find(&mut context, options.roles);
+    if let Some(plan) = options.plan {
+        context.problems.extend(plan.problems.iter().cloned());
+        context.appraisal = plan.appraisal.clone();
+        context.planned = true;
+        context.lost.extend(&plan.lost);
+    }
+    let named = find::find(&mut context, options.roles, options.plan);
     let ranges: Vec<SheetRange> =
-        named.iter().filter(|named| !named.too_large()).flat_map(|named| named.area.pieces()).collect();
+        named.iter().filter(|named| !named.too_large()).flat_map(find::Named::pieces).collect();
     if let Err(error) = context.sheets.load(&ranges) {
         context.problems.extend(error.problems().iter().cloned());
         return Err(context.ended());
     }
-    let sheets: BTreeSet<String> = named.iter().map(|named| named.at.sheet.clone()).collect();
+    let mut sheets: BTreeSet<String> = named.iter().map(|named| named.at.sheet.clone()).collect();
+    sheets.extend(options.plan.iter().flat_map(|plan| plan.elsewhere.clone()));
     let split = groups::split(&mut context, named);
-    let built = choices::build(&mut context, &split, options.basis);
+    let built = choices::build(&mut context, &split, options);
     if context.failed() {
         return Err(context.ended());
     }
@@ -76,9 +93,9 @@ pub fn resolve(package: &Package, book: &Workbook, options: &Options) -> Result<
         return Err(context.ended());
     }
     let problems = context.sorted();
-    let choices::Built { axes, choices, baseline } = built;
+    let choices::Built { axes, choices, baseline, decide } = built;
     let settings = std::mem::take(&mut context.settings).into_values().collect();
-    Ok(Appraisal { axes, choices, baseline, settings, coverage, problems, date1904: book.date1904 })
+    Ok(Appraisal { axes, choices, baseline, decide, settings, coverage, problems, date1904: book.date1904 })
 }
 
 /// What every step needs: the workbook, its cells, and the list of what was found wrong.
@@ -89,6 +106,12 @@ struct Context<'a> {
     facts: BTreeMap<String, Rc<SheetFacts>>,
     settings: BTreeMap<(String, Cell), Setting>,
     problems: Vec<Problem>,
+    /// Which of several appraisals of the workbook this is.
+    appraisal: Option<String>,
+    /// There is a plan.
+    planned: bool,
+    /// Roles that the plan gives to cells which are not there.
+    lost: BTreeSet<Role>,
 }
 
 impl<'a> Context<'a> {
@@ -100,7 +123,9 @@ impl<'a> Context<'a> {
             crate::roles::parse_name(name).is_some()
         };
         let problems = book.problems.iter().filter(ours).cloned().collect();
-        Ok(Context { package, book, sheets, facts: BTreeMap::new(), settings: BTreeMap::new(), problems })
+        let (facts, settings) = (BTreeMap::new(), BTreeMap::new());
+        let (appraisal, planned, lost) = (None, false, BTreeSet::new());
+        Ok(Context { package, book, sheets, facts, settings, problems, appraisal, planned, lost })
     }
 
     /// What a sheet holds besides values; nothing where it cannot be read, which is reported.
@@ -163,7 +188,8 @@ impl<'a> Context<'a> {
             let sheet = problem.place.sheet.as_deref();
             let index = sheet
                 .map_or(0, |name| 1 + order.iter().position(|known| *known == name).unwrap_or(order.len()));
-            (index, problem.place.range.map(|range| range.first), problem.code, problem.message.clone())
+            let (cell, line) = (problem.place.range.map(|range| range.first), problem.place.line);
+            (index, cell, line, problem.code, problem.message.clone())
         });
         problems.retain(|problem| seen.insert(format!("{problem} {:?}", problem.hint)));
         merge_neighbours(problems)

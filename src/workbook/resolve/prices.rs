@@ -2,8 +2,8 @@
 
 use hence_core::{PriceBasis, parse_financial_year};
 
-use crate::appraisal::{Axis, Declared, Given, Levels, Prices};
-use crate::problem::Problem;
+use crate::appraisal::{Axis, COMMAND_LINE, Declared, Given, Levels, Prices};
+use crate::problem::{Place, Problem};
 use crate::roles::Role;
 
 use super::cells::{number, shown};
@@ -16,10 +16,24 @@ use super::{Context, settings, streams, texts};
 const RATES: (f64, f64) = (-0.5, 1.0);
 
 /// What an option says of its prices.
-pub(super) fn prices(context: &mut Context, split: &Split, group: &Group, axis: &Axis) -> Prices {
+pub(super) fn prices(
+    context: &mut Context,
+    split: &Split,
+    group: &Group,
+    told: Option<&str>,
+    axis: &Axis,
+) -> Prices {
     let declared = split.of(group, Role::PriceBasis);
     let levels = split.of(group, Role::Prices).and_then(|named| levels(context, named, axis));
-    let prices = Prices { declared: declared.and_then(|named| price_basis(context, named)), levels };
+    let instead = told.map(|told| Named::told(Role::PriceBasis, "--prices", told));
+    let mut prices = Prices { declared: declared.and_then(|named| price_basis(context, named)), levels };
+    if let Some(given) = instead.and_then(|named| price_basis(context, &named)) {
+        if prices.levels.is_none() && year_differs(&prices, &given) {
+            context.report(unconverted(&given, declared));
+        }
+        let at = declared.and_then(Named::cells);
+        prices.declared = Some(Given { at, from: COMMAND_LINE.to_owned(), ..given });
+    }
     if let (Some(given), None) = (&prices.declared, split.of(group, Role::Prices))
         && given.value.basis == PriceBasis::Nominal
         && given.value.year.is_some()
@@ -37,6 +51,23 @@ pub(super) fn prices(context: &mut Context, split: &Split, group: &Group, axis: 
     prices
 }
 
+/// Whether another year of prices is asked for than the workbook states.
+fn year_differs(stated: &Prices, asked: &Given<Declared>) -> bool {
+    let was = stated.declared.as_ref().map(|given| given.value);
+    was.is_none_or(|was| was != asked.value)
+}
+
+fn unconverted(asked: &Given<Declared>, declared: Option<&Named>) -> Problem {
+    let place = declared.map_or_else(|| Place::name("--prices"), Named::place);
+    let year = asked.value.year.map(|year| format!(" of {year}")).unwrap_or_default();
+    Problem::error(
+        "price-basis",
+        place,
+        format!("--prices asks for prices{year}, and nothing in the workbook says how prices change"),
+    )
+    .hint("name an index of prices or an inflation rate hence_prices, or leave --prices out")
+}
+
 /// `real 2022`, `nominal`, `nominal to real 2022`.
 fn price_basis(context: &mut Context, named: &Named) -> Option<Given<Declared>> {
     let text = texts::text(context, named)?;
@@ -51,7 +82,7 @@ fn price_basis(context: &mut Context, named: &Named) -> Option<Given<Declared>> 
             .hint("write `real 2022` (the year of the prices), `real` or `nominal`"),
         );
     }
-    parsed.map(|value| Given { value, at: Some(named.at.clone()), from: named.from.clone() })
+    parsed.map(|value| Given { value, at: named.cells(), from: named.from.clone() })
 }
 
 fn parse_price_basis(text: &str) -> Option<Declared> {
@@ -85,8 +116,8 @@ fn price_year(word: &str) -> Option<i32> {
 
 /// An index along the years, or an inflation rate in one cell.
 fn levels(context: &mut Context, named: &Named, axis: &Axis) -> Option<Given<Levels>> {
-    let given = |value| Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() });
-    if named.at.range.is_single() {
+    let given = |value| Some(Given { value, at: named.cells(), from: named.from.clone() });
+    if named.stated.is_some() || named.at.range.is_single() {
         return given(Levels::Inflation(rate(context, named, "inflation")?));
     }
     if let Some(problem) = streams::wrong_shape(named, axis) {
@@ -120,7 +151,7 @@ fn levels(context: &mut Context, named: &Named, axis: &Axis) -> Option<Given<Lev
 /// Growth of a stream's price against others.
 pub(super) fn growth(context: &mut Context, named: &Named) -> Option<Given<f64>> {
     let value = rate(context, named, "growth")?;
-    Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() })
+    Some(Given { value, at: named.cells(), from: named.from.clone() })
 }
 
 /// A rate a year in one cell.

@@ -3,6 +3,7 @@
 use crate::model::Workbook;
 use crate::package::Package;
 use crate::problem::{Place, Problem, Result};
+use crate::references::Area;
 use crate::roles::{self, Role, Way};
 
 use super::{Context, find, groups};
@@ -16,6 +17,8 @@ pub struct Found {
     pub role: String,
     /// What it refers to.
     pub place: Place,
+    /// Its cells; none of hence's own names.
+    pub at: Option<Area>,
     /// The option it belongs to; none where it is shared.
     pub option: Option<String>,
 }
@@ -36,7 +39,7 @@ pub struct NamesReport {
 /// **Errors**: only where the workbook cannot be read at all; names that cannot be used are listed as slips.
 pub fn names(package: &Package, book: &Workbook) -> Result<NamesReport> {
     let mut context = Context::open(package, book)?;
-    let named = find::find(&mut context, &[]);
+    let named = find::find(&mut context, &[], None);
     let split = groups::split(&mut context, named);
     let mut report = NamesReport::default();
     let only = split.groups.len() == 1 && split.shared.is_empty();
@@ -51,7 +54,8 @@ pub fn names(package: &Package, book: &Workbook) -> Result<NamesReport> {
             && name.role.info().way == Way::Own
         {
             let place = Place::name(&defined.name);
-            report.found.push(Found { name: defined.name.clone(), role: name.words(), place, option: None });
+            let (name, role) = (defined.name.clone(), name.words());
+            report.found.push(Found { name, role, place, at: None, option: None });
         }
     }
     let all: Vec<Role> = split
@@ -79,6 +83,6 @@ pub fn names(package: &Package, book: &Workbook) -> Result<NamesReport> {
 }
 
 fn found(named: &find::Named, option: Option<String>) -> Found {
-    let place = Place::cells(&named.at.sheet, named.at.range);
-    Found { name: named.from.clone(), role: named.name.words(), place, option }
+    let (place, at) = (Place::area(&named.area), Some(named.area.clone()));
+    Found { name: named.from.clone(), role: named.name.words(), place, at, option }
 }

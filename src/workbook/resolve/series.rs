@@ -97,7 +97,8 @@ fn place(named: &Named, range: Range) -> Place {
 fn named(context: &mut Context, cells: &str) -> Checked<Named> {
     let area = located(context, Place::name(cells), cells)?;
     let name = RoleName { role: Role::Consumption, stream: None, option: None };
-    let mut named = Named { name, from: cells.to_owned(), at: area.hull(), area, scope: None };
+    let mut named =
+        Named { name, from: cells.to_owned(), at: area.hull(), area, scope: None, stated: None, line: None };
     if named.area.parts().len() > 1 {
         return Err(Problem::error("name-union", named.place(), "comes in pieces, and one range is needed")
             .hint("give the cells of the series without a gap")

@@ -8,6 +8,7 @@ use crate::reading::Value;
 
 use super::cells::{number, shown, single};
 use super::find::Named;
+use super::planned::held;
 use super::{Context, texts};
 
 /// Lowest and highest flat rate of a number cell.
@@ -24,33 +25,28 @@ pub(super) fn basis(
     let Some(told) = told else {
         let named = named?;
         let value = basis_text(context, named)?;
-        return Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() });
+        return Some(Given { value, at: named.cells(), from: named.from.clone() });
     };
     if let Some(named) = named {
         // The cell is only compared here, so what is wrong with it does not matter.
-        let held =
-            context.grid(&named.at).and_then(|grid| grid.iter().next().map(|(_, cell)| cell.value.clone()));
-        let held = match held {
-            Some(Value::Text(text)) => text.trim().to_owned(),
-            Some(Value::Number(number)) => number.to_string(),
-            _ => String::new(),
-        };
+        let held = held(context, named);
+        let whose = if named.stated.is_some() { "plan" } else { "workbook" };
         if !held.is_empty() && !held.eq_ignore_ascii_case(told.trim()) {
             context.report(
                 Problem::warning(
                     "basis-overridden",
                     named.place(),
                     format!(
-                        "the workbook says `{}`, the command line `{}`: the command line counts",
+                        "the {whose} says `{}`, the command line `{}`: the command line counts",
                         shown(&held),
                         shown(told)
                     ),
                 )
-                .hint("leave --basis out to use the workbook's own"),
+                .hint(format!("leave --basis out to use the {whose}'s own")),
             );
         }
     }
-    let at = named.map(|named| named.at.clone());
+    let at = named.and_then(Named::cells);
     Some(Given { value: told.trim().to_owned(), at, from: COMMAND_LINE.to_owned() })
 }
 
@@ -89,7 +85,7 @@ fn basis_text(context: &mut Context, named: &Named) -> Option<String> {
 pub(super) fn timing(context: &mut Context, named: &Named) -> Option<Given<Timing>> {
     let text = texts::text(context, named)?;
     match text.parse::<Timing>() {
-        Ok(value) => Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() }),
+        Ok(value) => Some(Given { value, at: named.cells(), from: named.from.clone() }),
         Err(error) => {
             context.report(core_problem(&error, &text, named.place()));
             None
@@ -101,7 +97,7 @@ pub(super) fn timing(context: &mut Context, named: &Named) -> Option<Given<Timin
 pub(super) fn tail(context: &mut Context, named: &Named) -> Option<Given<Tail>> {
     let text = texts::text(context, named)?;
     match Tail::parse(&text) {
-        Ok(value) => Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() }),
+        Ok(value) => Some(Given { value, at: named.cells(), from: named.from.clone() }),
         Err(error) => {
             context.report(core_problem(&error, &text, named.place()));
             None
@@ -231,13 +227,13 @@ pub(super) fn uplift(context: &mut Context, named: Option<&Named>) -> Option<Giv
         );
         return None;
     }
-    Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() })
+    Some(Given { value, at: named.cells(), from: named.from.clone() })
 }
 
 /// A residual value.
 pub(super) fn residual(context: &mut Context, named: &Named) -> Option<Given<f64>> {
     let value = amount(context, named)?;
-    Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() })
+    Some(Given { value, at: named.cells(), from: named.from.clone() })
 }
 
 /// The number of a role's one cell.

@@ -1,11 +1,11 @@
 //! Cells that hold names and settings in words.
 
-use crate::problem::{Place, Problem};
-use crate::reading::Value;
+use crate::problem::Problem;
+use crate::reading::{Grid, Value};
 use crate::references::Cell;
 
 use super::Context;
-use super::cells::{error_value, one, single};
+use super::cells::{error_value, single};
 use super::find::Named;
 
 /// The text of a role's one cell; a number gives its shortest text. Nothing where it is blank.
@@ -58,11 +58,13 @@ pub(super) fn kind(value: &Value) -> &'static str {
 
 /// The names listed in a role's cells, parted by commas, semicolons or lines, each with its cell.
 pub(super) fn list(context: &mut Context, named: &Named) -> Vec<(String, Cell)> {
-    let Some(grid) = context.grid(&named.at) else { return Vec::new() };
+    let stated = named.stated.clone().map(|value| vec![(named.at.range.first, value)]);
+    let read = |grid: Grid| grid.iter().map(|(cell, content)| (cell, content.value.clone())).collect();
+    let Some(held) = stated.or_else(|| context.grid(&named.at).map(read)) else { return Vec::new() };
     let mut names = Vec::new();
-    for (cell, content) in grid.iter() {
-        let place = || Place::cells(&named.at.sheet, one(cell)).called(&named.from);
-        match &content.value {
+    for (cell, value) in held {
+        let place = || named.cell(cell);
+        match &value {
             Value::Blank => {}
             Value::Text(text) => {
                 let parts = text.split([',', ';', '\n']).map(str::trim).filter(|part| !part.is_empty());

@@ -69,7 +69,7 @@ fn names_incomes(split: &Split, group: &Group) -> bool {
 pub(super) fn income(context: &mut Context, named: &Named) -> Option<Given<f64>> {
     let value = settings::amount(context, named)?;
     if value > 0.0 {
-        return Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() });
+        return Some(Given { value, at: named.cells(), from: named.from.clone() });
     }
     context.report(
         Problem::error("income", named.place(), format!("is {value}, and an income is above 0"))
@@ -81,7 +81,7 @@ pub(super) fn income(context: &mut Context, named: &Named) -> Option<Given<f64>>
 fn elasticity(context: &mut Context, named: &Named) -> Option<Given<f64>> {
     let value = settings::amount(context, named)?;
     if (0.0..=STEEPEST).contains(&value) {
-        return Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() });
+        return Some(Given { value, at: named.cells(), from: named.from.clone() });
     }
     context.report(
         Problem::error("elasticity", named.place(), format!("is {value}, allowed 0 to {STEEPEST}"))

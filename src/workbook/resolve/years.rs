@@ -3,7 +3,7 @@
 use chrono::{Days, NaiveDate};
 use hence_core::parse_financial_year;
 
-use crate::appraisal::{Axis, Base, Direction, Given, Label};
+use crate::appraisal::{Axis, Base, COMMAND_LINE, Direction, Given, Label};
 use crate::clock::label_kind;
 use crate::problem::{Place, Problem};
 use crate::reading::{ReadCell, Value};
@@ -219,8 +219,22 @@ pub(super) fn date(serial: f64, date1904: bool) -> Option<NaiveDate> {
     epoch.checked_add_days(Days::new(days))
 }
 
-/// Reads the base for these years, or reports why it is none.
-pub(super) fn base(context: &mut Context, named: Option<&Named>, axis: &Axis) -> Option<Given<Base>> {
+/// Reads the base for these years, the command line's before the workbook's, or reports why it is none.
+pub(super) fn base(
+    context: &mut Context,
+    named: Option<&Named>,
+    told: Option<&str>,
+    axis: &Axis,
+) -> Option<Given<Base>> {
+    if let Some(told) = told {
+        let instead = Named::told(Role::Base, "--base", told);
+        let given = read_base(context, Some(&instead), axis)?;
+        return Some(Given { at: named.and_then(Named::cells), from: COMMAND_LINE.to_owned(), ..given });
+    }
+    read_base(context, named, axis)
+}
+
+fn read_base(context: &mut Context, named: Option<&Named>, axis: &Axis) -> Option<Given<Base>> {
     let Some(named) = named else {
         // Numbers and offsets count from their own zero; anything else needs a base, reported as missing.
         let zero = matches!(axis.labels.first(), Some(Label::Number(_) | Label::Offset(_)));
@@ -241,7 +255,7 @@ pub(super) fn base(context: &mut Context, named: Option<&Named>, axis: &Axis) ->
             return None;
         }
     };
-    let given = |value| Some(Given { value, at: Some(named.at.clone()), from: named.from.clone() });
+    let given = |value| Some(Given { value, at: named.cells(), from: named.from.clone() });
     let first = axis.labels.first()?;
     match (&stated, first) {
         (Label::Year(year), Label::Year(_) | Label::Number(_) | Label::Offset(_)) => given(Base::Year(*year)),

@@ -8,7 +8,7 @@ use crate::formulas::side;
 use crate::graft::{ChartFinish, Legend};
 use crate::layout::Layout;
 use crate::references::{Cell, Range, SheetRange};
-use crate::valuation::npv_on;
+use crate::valuation::worth_on;
 use crate::writer::{Chart, ChartKind, Series, Sheet, Style};
 
 /// Columns and rows of a chart.
@@ -217,7 +217,7 @@ fn npv_at(input: &AuditInput<'_>, c: usize, rate: f64) -> Option<f64> {
     let choice = &input.appraisal.choices[c];
     let at = Where { base_year: base_year(&choice.base.value), length: None };
     let curve = Basis::from_rate(rate).ok()?.curve(&at).ok()?;
-    npv_on(input.appraisal, choice, &input.outcomes[c], &curve).ok()
+    worth_on(input.appraisal, choice, &input.outcomes[c], &curve).ok().map(|worth| worth.npv)
 }
 
 #[cfg(test)]

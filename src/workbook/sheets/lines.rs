@@ -7,7 +7,7 @@ use crate::writer::{Sheet, Style};
 /// What "agrees" and "differs" are written as.
 pub(super) const AGREES: &str = "agrees";
 /// See [`AGREES`].
-pub(super) const DIFFERS: &str = "differs";
+pub(crate) const DIFFERS: &str = "differs";
 /// Written where there is no second route.
 pub(super) const UNCHECKED: &str = "not independently checked";
 

@@ -18,6 +18,7 @@ mod rebuild;
 mod second_route;
 mod sensitivity;
 mod settings;
+mod several;
 mod summary;
 mod tails;
 mod targets;
@@ -35,11 +36,13 @@ use crate::outcome::ChoiceOutcome;
 use crate::problem::{Problem, Result};
 use crate::references::{Cell, SheetRange};
 use crate::report::Companion;
-use crate::writer::{self, Content, Sheet, Style};
+use crate::writer::{Content, Sheet, Style};
 
 pub(crate) use adjustments::adjusted;
 pub(crate) use charts::era_words;
-pub use own::{DIGEST, OWN, VERDICT};
+pub(crate) use lines::DIFFERS;
+pub use own::{APPRAISAL, DIGEST, OWN, VERDICT};
+pub use several::{Sibling, overall, package};
 pub use summary::VERDICT_AGREES;
 pub(crate) use targets::role_words;
 
@@ -71,6 +74,12 @@ pub struct Meta {
     pub input_sha256: String,
     /// SHA-256 of the canonical basis texts, one a line, by option.
     pub basis_sha256: String,
+    /// The file's name and SHA-256 of the plan that said what is where, if any.
+    pub plan: Option<(String, String)>,
+    /// Which of several appraisals of the workbook this is.
+    pub appraisal: Option<String>,
+    /// SHA-256 of what was asked for: [`FillRequest::sha256`](crate::fill::FillRequest::sha256).
+    pub request_sha256: String,
     /// The version of hence.
     pub version: String,
     /// `--as-of`, as given.
@@ -133,6 +142,7 @@ impl Carried {
         match &self.content {
             Content::Text(text) => sheet.text(row, col, self.style, text),
             Content::Number(x) => sheet.number(row, col, self.style, *x),
+            Content::Logical(truth) => sheet.logical(row, col, self.style, *truth),
             Content::Formula(text, result) => sheet.formula(row, col, self.style, text, result.clone()),
         }
     }
@@ -163,6 +173,8 @@ pub struct AuditInput<'a> {
     pub carried: &'a [Carried],
     /// What differs in the package by design, a sentence each.
     pub differs: &'a [String],
+    /// The other appraisals, on whose summary the verdict on all of them stands; else none.
+    pub siblings: &'a [Sibling],
 }
 
 /// hence's sheets, made.
@@ -186,8 +198,14 @@ pub struct Built {
 pub struct Composed {
     /// Discounting, then the audit sheets.
     pub sheets: Vec<Sheet>,
+    /// Which of several appraisals of the workbook they are of.
+    pub appraisal: Option<String>,
     /// What the name of the verdict cell refers to.
     pub verdict_at: String,
+    /// Where the verdict on all appraisals stands; none on the sheets of those after the first.
+    pub overall_at: Option<String>,
+    /// The verdict has no result until a spreadsheet program computes it.
+    pub awaits: bool,
     /// All else that [`build`] gives, its bytes still empty.
     pub built: Built,
 }
@@ -206,7 +224,8 @@ pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
     let (sensitivity, mut finishes) = sensitivity::sheet(input, layout, &checks);
     let (charts, more) = charts::sheet(input, layout);
     finishes.extend(more);
-    let verdict_at = summary::verdict_text(&summary.sheet.name, summary.cell);
+    let verdict_at = summary::verdict_text(&summary.sheet.name, summary::VERDICT_CELL);
+    let overall_at = summary.overall.map(|cell| summary::verdict_text(&summary.sheet.name, cell));
     let discounting = discounting::sheet(input, layout);
     let mut sheets = vec![
         discounting,
@@ -217,7 +236,7 @@ pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
         changes::sheet(input),
         charts,
     ];
-    let names = sheets.iter().flat_map(own::marks).collect();
+    let names = sheets.iter().flat_map(|sheet| own::marks(sheet, input.meta.appraisal.as_deref())).collect();
     for sheet in &mut sheets {
         put_back(sheet, input.carried);
     }
@@ -228,15 +247,17 @@ pub fn compose(input: &AuditInput<'_>, layout: &Layout) -> Composed {
         verdict: summary.verdict,
         checks: (checks.count + coverage.valued, checks.differing.len()),
     };
-    Composed { sheets, verdict_at, built }
+    let appraisal = input.meta.appraisal.clone();
+    Composed { sheets, appraisal, verdict_at, overall_at, awaits: checks.awaiting > 0, built }
 }
 
 /// Makes the sheet Discounting and the audit sheets as a package.
 ///
 /// **Errors**: `own-sheet` where a number is not finite or a formula would be too long.
 pub fn build(input: &AuditInput<'_>, layout: &Layout) -> Result<Built> {
-    let Composed { sheets, verdict_at, built } = compose(input, layout);
-    Ok(Built { bytes: writer::package(&sheets, &[(VERDICT, &verdict_at)])?, ..built })
+    let composed = compose(input, layout);
+    let bytes = package(std::slice::from_ref(&composed))?;
+    Ok(Built { bytes, ..composed.built })
 }
 
 /// Puts notes back where they stood, or in the first free row below what hence wrote there.

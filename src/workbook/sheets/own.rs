@@ -11,33 +11,73 @@ use crate::writer::{Content, Sheet};
 pub const OWN: &str = "hence_own";
 /// The sheet-scoped hidden name that keeps the digest of what hence wrote on the sheet.
 pub const DIGEST: &str = "hence_digest";
-/// The name of the verdict cell.
+/// The sheet-scoped hidden name that keeps which of several appraisals the sheet is of.
+pub const APPRAISAL: &str = "hence_appraisal";
+/// The name of the verdict cell; of several appraisals, each has one that ends in its name.
 pub const VERDICT: &str = "hence_verdict";
 
 impl SheetNames {
+    /// The names where nothing clashes, in the order of [`SheetNames::all`].
+    pub const PLAIN: [&str; 7] = [
+        "Discounting",
+        "Audit summary",
+        "Audit coverage",
+        "Audit checks",
+        "Audit sensitivity",
+        "Audit changes",
+        "Audit charts",
+    ];
+
     /// Names that clash with no sheet of the workbook, whatever the case: `Discounting`, or
     /// `Discounting 2` and so on.
     pub fn choose(existing: &[String]) -> Self {
-        let taken: Vec<String> = existing.iter().map(|name| name.to_lowercase()).collect();
-        let free = |wanted: &str| {
-            let mut name = wanted.to_owned();
-            let mut n = 2;
-            while taken.contains(&name.to_lowercase()) {
-                name = format!("{wanted} {n}");
-                n += 1;
-            }
-            name
-        };
-        SheetNames {
-            discounting: free("Discounting"),
-            summary: free("Audit summary"),
-            coverage: free("Audit coverage"),
-            checks: free("Audit checks"),
-            sensitivity: free("Audit sensitivity"),
-            changes: free("Audit changes"),
-            charts: free("Audit charts"),
-        }
+        SheetNames::choose_for(None, existing)
     }
+
+    /// The same for one of several appraisals: `Discounting North`, cut to what fits the tab.
+    pub fn choose_for(appraisal: Option<&str>, existing: &[String]) -> Self {
+        let taken: Vec<String> = existing.iter().map(|name| name.to_lowercase()).collect();
+        let label = appraisal.map(on_tab).unwrap_or_default();
+        let free = |plain: &str| {
+            let named = |number: &str| {
+                let room = MAX_TAB - plain.len() - number.len() - 1;
+                match cut(&label, room) {
+                    "" => format!("{plain}{number}"),
+                    label => format!("{plain} {label}{number}"),
+                }
+            };
+            let numbered = (2..).map(|n| named(&format!(" {n}")));
+            let mut names = std::iter::once(named("")).chain(numbered);
+            names.find(|name| !taken.contains(&name.to_lowercase())).unwrap_or_default()
+        };
+        let [discounting, summary, coverage, checks, sensitivity, changes, charts] = Self::PLAIN.map(free);
+        SheetNames { discounting, summary, coverage, checks, sensitivity, changes, charts }
+    }
+
+    /// Every one of them, in the order in which they stand.
+    pub fn all(&self) -> impl Iterator<Item = &str> {
+        let Self { discounting, summary, coverage, checks, sensitivity, changes, charts } = self;
+        [discounting, summary, coverage, checks, sensitivity, changes, charts].into_iter().map(String::as_str)
+    }
+}
+
+/// The longest name of a sheet, in UTF-16 units.
+const MAX_TAB: usize = 31;
+
+/// An appraisal's name without what the name of a sheet may not hold.
+fn on_tab(name: &str) -> String {
+    let kept = name.chars().map(|c| if c.is_control() || r"[]:*?/\'".contains(c) { ' ' } else { c });
+    kept.collect::<String>().split_whitespace().collect::<Vec<_>>().join(" ")
+}
+
+/// As much of a text as fits so many UTF-16 units.
+fn cut(text: &str, room: usize) -> &str {
+    let mut used = 0;
+    let end = text.char_indices().find(|(_, c)| {
+        used += c.len_utf16();
+        used > room
+    });
+    end.map_or(text, |(at, _)| &text[..at]).trim_end()
 }
 
 /// What a cell adds to the [`digest`].
@@ -70,12 +110,13 @@ pub fn digest(cells: &[(Cell, String)]) -> String {
 /// The marks of ownership of one sheet: what hence wrote on it, and its digest. To be taken before notes
 /// of a person are put back, so that they stand outside of what hence calls its own. (Print titles come with the
 /// package.)
-pub(super) fn marks(sheet: &Sheet) -> [NewName; 2] {
+pub(crate) fn marks(sheet: &Sheet, appraisal: Option<&str>) -> Vec<NewName> {
     let cells: Vec<(Cell, String)> = sheet
         .cells()
         .filter_map(|(cell, content)| match content {
             Content::Text(text) => (!text.is_empty()).then(|| (cell, text_mark(text))),
             Content::Number(number) => Some((cell, number_mark(*number))),
+            Content::Logical(_) => None,
             Content::Formula(..) => Some((cell, FORMULA_MARK.to_owned())),
         })
         .collect();
@@ -87,10 +128,13 @@ pub(super) fn marks(sheet: &Sheet) -> [NewName; 2] {
         hidden: true,
         comment: None,
     };
-    [
-        mark(OWN, format!("{}!{range}", quote_sheet(&sheet.name))),
-        mark(DIGEST, format!("\"{}\"", digest(&cells))),
-    ]
+    let own = appraisal.map(|name| mark(APPRAISAL, format!("\"{}\"", name.replace('"', "\"\""))));
+    own.into_iter()
+        .chain([
+            mark(OWN, format!("{}!{range}", quote_sheet(&sheet.name))),
+            mark(DIGEST, format!("\"{}\"", digest(&cells))),
+        ])
+        .collect()
 }
 
 #[cfg(test)]
@@ -102,6 +146,18 @@ mod tests {
         let names = SheetNames::choose(&["discounting".into(), "DISCOUNTING 2".into(), "Data".into()]);
         assert_eq!(names.discounting, "Discounting 3");
         assert_eq!(names.summary, "Audit summary");
+    }
+
+    #[test]
+    fn names_of_appraisals_fit_their_tabs() {
+        let long = "The eastern: embankment, all of it";
+        let first = SheetNames::choose_for(Some(long), &[]);
+        assert_eq!(first.discounting, "Discounting The eastern embankm");
+        assert_eq!(first.sensitivity, "Audit sensitivity The eastern");
+        let taken: Vec<String> = first.all().map(str::to_owned).collect();
+        let second = SheetNames::choose_for(Some(long), &taken);
+        assert_eq!(second.discounting, "Discounting The eastern emban 2");
+        assert!(first.all().chain(second.all()).all(|name| name.chars().count() <= 31));
     }
 
     #[test]

@@ -8,14 +8,16 @@ use super::AuditInput;
 use super::checks::{Checks, absolute_cell};
 use super::discounting::table_ref;
 use super::lines::UNCHECKED;
-use super::nets::Nets;
+use super::nets::{Band, Nets};
+use super::second_route::Route;
 use crate::compare::{Sensitivity, Side, Why};
-use crate::formulas::absolute;
+use crate::formulas::{absolute, literal};
 use crate::graft::ChartFinish;
 use crate::layout::{Column, Layout};
 use crate::patch::Cached;
+use crate::ranking::{Worth, level};
 use crate::references::{Cell, Range};
-use crate::writer::{Sheet, Style};
+use crate::writer::{MAX_FORMULA, Sheet, Style};
 
 /// Flat yearly rates of the table.
 const FLAT: [f64; 9] = [0.0, 0.01, 0.02, 0.03, 0.04, 0.05, 0.06, 0.08, 0.1];
@@ -40,7 +42,7 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout, checks: &Checks) ->
     let options = input.appraisal.choices.len() as u32;
     sheet.columns(0, 0, 44.0);
     sheet.columns(1, (options + 2).max(7), 19.0);
-    sheet.columns(options + 2, options + 2, 26.0);
+    sheet.columns(options + 2, options + 2, 32.0);
     sheet.text(0, 0, Style::Title, "Audit sensitivity");
     let words = "What the options come to on other rates, where the decision switches, which streams move it most, and \
                  where the rate comes from. Numbers marked live are formulas over the cells of the workbook; the others \
@@ -53,6 +55,41 @@ pub(super) fn sheet(input: &AuditInput<'_>, layout: &Layout, checks: &Checks) ->
     page.derivations();
     page.streams();
     (page.sheet, page.finishes)
+}
+
+/// Rates other than those of the basis.
+struct Discount {
+    /// As formulas; none where one formula cannot tell them.
+    bands: Option<Vec<Band>>,
+    factors: Factors,
+}
+
+enum Factors {
+    Flat(f64),
+    Route(Route),
+}
+
+impl Discount {
+    /// One yearly rate, which stands in a cell.
+    fn flat(cell: String, rate: f64) -> Discount {
+        Discount { bands: Some(vec![Band { after: 0.0, rate: cell }]), factors: Factors::Flat(rate) }
+    }
+
+    fn factor(&self, t: f64) -> f64 {
+        match &self.factors {
+            Factors::Flat(rate) => (1.0 + rate).powf(-t),
+            Factors::Route(route) => route.factor(t),
+        }
+    }
+}
+
+/// A net present value by plain arithmetic.
+struct Net {
+    /// Live, where one formula can tell it.
+    formula: Option<String>,
+    value: f64,
+    /// The gross present value.
+    gross: f64,
 }
 
 impl Page<'_> {
@@ -103,16 +140,16 @@ impl Page<'_> {
                 let result = Cached::Number(outcome.totals().npv);
                 self.sheet.formula(self.row, c as u32 + 1, Style::Money, text, result);
             }
-            self.ends(heading, "live", &npv(side));
+            self.ends(heading, "live", &worths(side));
         }
-        for (by, npv) in &self.told.shifted {
+        for (by, worths) in &self.told.shifted {
             let moved = if *by < 0.0 { "lower" } else { "higher" };
             let text = format!("Declared, every rate a point {moved} (of a Ramsey basis its preference)");
-            self.fixed(heading, &text, npv.as_deref());
+            self.fixed(heading, &text, worths.as_deref());
         }
         for side in sides.iter().filter(|side| side.why != Why::Declared) {
             let why = if side.why == Why::Companion { "Companion" } else { "Against" };
-            self.fixed(heading, &format!("{why}: {}", side.basis), Some(&npv(side)));
+            self.fixed(heading, &format!("{why}: {}", side.basis), Some(&worths(side)));
         }
         self.sheet.text(self.row, 0, Style::Strong, "Flat yearly rate in place of the basis:");
         self.row += 1;
@@ -123,32 +160,32 @@ impl Page<'_> {
     }
 
     /// A row of numbers as computed at the fill.
-    fn fixed(&mut self, heading: u32, label: &str, npv: Option<&[f64]>) {
+    fn fixed(&mut self, heading: u32, label: &str, worths: Option<&[Worth]>) {
         self.sheet.text(self.row, 0, Style::Wrapped, label);
-        let Some(npv) = npv.filter(|npv| npv.iter().all(|x| x.is_finite())) else {
+        let Some(worths) = worths.filter(|worths| worths.iter().all(|worth| worth.npv.is_finite())) else {
             self.sheet.text(self.row, 1, Style::Wrapped, NO_VALUE);
             self.row += 1;
             return;
         };
-        for (c, x) in npv.iter().enumerate() {
-            self.sheet.number(self.row, c as u32 + 1, Style::Money, *x);
+        for (c, worth) in worths.iter().enumerate() {
+            self.sheet.number(self.row, c as u32 + 1, Style::Money, worth.npv);
         }
-        self.ends(heading, UNCHECKED, npv);
+        self.ends(heading, UNCHECKED, worths);
     }
 
     /// A row at a flat rate: live where the net flows are.
     fn flat(&mut self, heading: u32, rate: f64) {
         self.sheet.number(self.row, 0, Style::Rate, rate);
-        let home = self.input.names.sensitivity.clone();
         let cell = format!("$A{}", self.row + 1);
+        let discount = Discount::flat(cell, rate);
         let base = self.input.appraisal.baseline;
         let mut values = Vec::new();
         for c in 0..self.input.appraisal.choices.len() {
-            let live = self.net_at(&home, c, base, &cell, rate);
-            match live.filter(|(_, x, _)| x.is_finite()) {
-                Some((text, x, _)) => {
+            let live = self.net_at(c, base, &discount).filter(|net| net.value.is_finite());
+            match live.and_then(|net| Some((net.formula?, net.value, net.gross))) {
+                Some((text, x, gross)) => {
                     self.sheet.formula(self.row, c as u32 + 1, Style::Money, text, Cached::Number(x));
-                    values.push(x);
+                    values.push(Worth::of(x, gross));
                 }
                 None => {
                     self.sheet.text(self.row, c as u32 + 1, Style::Instead, self.why_not(c));
@@ -169,38 +206,41 @@ impl Page<'_> {
         if options.into_iter().any(own) { "a stream has its own basis" } else { "flows follow the last year" }
     }
 
-    /// The net present value of an option, less that of another, at a flat rate: formula, number, and gross present value.
-    fn net_at(
-        &self,
-        home: &str,
-        c: usize,
-        less: Option<usize>,
-        cell: &str,
-        rate: f64,
-    ) -> Option<(String, f64, f64)> {
+    /// The net present value of an option, less that of another, by plain arithmetic.
+    fn net_at(&self, c: usize, less: Option<usize>, discount: &Discount) -> Option<Net> {
         if less == Some(c) {
-            return Some(("0".to_owned(), 0.0, 0.0));
+            return Some(Net { formula: Some("0".to_owned()), value: 0.0, gross: 0.0 });
         }
-        let own = self.nets[c].as_ref()?;
-        let (net, gross) = own.value(rate);
-        let text = own.formula(home, cell);
-        let Some(base) = less else { return Some((text, net, gross)) };
-        let base = self.nets[base].as_ref()?;
-        let (less, more) = base.value(rate);
-        Some((format!("{text}-{}", base.formula(home, cell)), net - less, gross + more))
+        let (home, own) = (&self.input.names.sensitivity, self.nets[c].as_ref()?);
+        let factor = |t: f64| discount.factor(t);
+        let (mut value, mut gross) = own.value(&factor);
+        let text = |nets: &Nets| discount.bands.as_ref().map(|bands| nets.formula(home, bands));
+        let mut formula = text(own);
+        if let Some(base) = less {
+            let base = self.nets[base].as_ref()?;
+            let (theirs, more) = base.value(&factor);
+            (value, gross) = (value - theirs, gross + more);
+            formula = formula.zip(text(base)).map(|(own, theirs)| format!("{own}-{theirs}"));
+        }
+        let fits = |text: &String| text.len() <= MAX_FORMULA - "ABS()".len();
+        Some(Net { formula: formula.filter(fits), value, gross })
     }
 
     /// The best option of a row, live, and how its numbers stand.
-    fn ends(&mut self, heading: u32, checked: &str, npv: &[f64]) {
+    fn ends(&mut self, heading: u32, checked: &str, worths: &[Worth]) {
         let count = self.options();
         let cells =
             |row: u32| absolute(Range { first: Cell { row, col: 1 }, last: Cell { row, col: count } });
         let (row, names) = (cells(self.row), cells(heading));
-        let text =
-            format!("IF(COUNTIF({row},MAX({row}))>1,\"several\",INDEX({names},1,MATCH(MAX({row}),{row},0)))");
-        let most = npv.iter().copied().fold(f64::NEG_INFINITY, f64::max);
-        let first: Vec<usize> = (0..npv.len()).filter(|&i| npv[i] == most).collect();
-        let best = match first.as_slice() {
+        // What rounding may make of a difference from the highest, as at the fill.
+        let level = level(worths);
+        let highest = level.first().map_or(0.0, |&i| worths[i].dust);
+        let dust: Vec<String> = worths.iter().map(|worth| literal(worth.dust.max(highest))).collect();
+        let text = format!(
+            "IF(SUMPRODUCT(({row}+{{{}}}>=MAX({row}))*1)>1,\"several\",INDEX({names},1,MATCH(MAX({row}),{row},0)))",
+            dust.join(",")
+        );
+        let best = match level.as_slice() {
             [i] => self.input.appraisal.choices[*i].name.clone(),
             _ => "several".to_owned(),
         };
@@ -215,6 +255,6 @@ impl Page<'_> {
     }
 }
 
-fn npv(side: &Side) -> Vec<f64> {
-    side.standings.iter().map(|standing| standing.totals.npv).collect()
+fn worths(side: &Side) -> Vec<Worth> {
+    side.standings.iter().map(|standing| standing.worth).collect()
 }

@@ -6,7 +6,7 @@ use super::checks::{Checks, counts};
 use super::coverage::{Coverage, places};
 use super::discounting::table_ref;
 use super::lines::DIFFERS;
-use super::{AuditInput, adjustments, block_basis, charts::era_words, charts::thousands};
+use super::{AuditInput, adjustments, block_basis, charts::era_words, charts::thousands, several};
 use crate::appraisal::{StreamKind, TargetRole};
 use crate::formulas::{ENDLESS_IRR, NO_IRR, no_ratio, one, refer};
 use crate::layout::{Column, Layout};
@@ -19,6 +19,8 @@ use crate::writer::{Sheet, Style};
 /// The verdict where everything agrees.
 pub const VERDICT_AGREES: &str = "arithmetic agrees with the declared basis";
 
+/// Where the verdict stands.
+pub(super) const VERDICT_CELL: Cell = Cell { row: VERDICT, col: 1 };
 /// Rows of the verdict and the counts.
 const VERDICT: u32 = 2;
 const COUNT: u32 = 3;
@@ -32,8 +34,8 @@ pub(super) struct Summary {
     pub sheet: Sheet,
     /// The verdict as evaluated here.
     pub verdict: String,
-    /// The verdict's cell.
-    pub cell: Cell,
+    /// Where the verdict on all appraisals stands, if on this sheet.
+    pub overall: Option<Cell>,
 }
 
 /// Makes the sheet.
@@ -50,6 +52,9 @@ pub(super) fn sheet(
     sheet.text(0, 0, Style::Title, "Audit summary");
     let verdict = verdict(&mut sheet, input, checks, coverage);
     let mut page = Page { sheet, row: COUNT_DIFFERS + 2 };
+    let own = (checks.awaiting == 0).then_some(verdict.as_str());
+    let gathers = !input.siblings.is_empty();
+    let overall = gathers.then(|| several::section(&mut page, input, own));
     page.provenance(input);
     page.basis(input, layout);
     page.results(input, layout);
@@ -60,7 +65,7 @@ pub(super) fn sheet(
     page.sheet.text(page.row, 0, Style::Section, "Notes of the reviewer (type below; kept at the next fill)");
     page.sheet.freeze(VERDICT + 1, 0);
     page.sheet.repeat(0, VERDICT);
-    Summary { sheet: page.sheet, verdict, cell: Cell { row: VERDICT, col: 1 } }
+    Summary { sheet: page.sheet, verdict, overall }
 }
 
 fn verdict(sheet: &mut Sheet, input: &AuditInput<'_>, checks: &Checks, coverage: &Coverage) -> String {
@@ -112,13 +117,13 @@ fn verdict(sheet: &mut Sheet, input: &AuditInput<'_>, checks: &Checks, coverage:
 }
 
 /// The sheet with the next free row.
-struct Page {
-    sheet: Sheet,
-    row: u32,
+pub(super) struct Page {
+    pub sheet: Sheet,
+    pub row: u32,
 }
 
 impl Page {
-    fn section(&mut self, text: &str) {
+    pub(super) fn section(&mut self, text: &str) {
         self.sheet.text(self.row, 0, Style::Section, text);
         self.row += 1;
     }
@@ -149,6 +154,12 @@ impl Page {
         self.pair("Workbook", &meta.input_name);
         self.pair("SHA-256 of the workbook", &meta.input_sha256);
         self.pair("SHA-256 of the basis texts", &meta.basis_sha256);
+        if let Some((name, sha256)) = &meta.plan {
+            self.pair("Plan, which says what is where", name);
+            self.pair("SHA-256 of the plan", sha256);
+        }
+        self.pair("Appraisal", meta.appraisal.as_deref().unwrap_or(""));
+        self.pair("SHA-256 of what was asked for", &meta.request_sha256);
         self.pair("Made by", &format!("hence {}", meta.version));
         self.pair("As of", meta.as_of.as_deref().unwrap_or(""));
         self.pair("By", meta.by.as_deref().unwrap_or(""));

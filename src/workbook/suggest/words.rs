@@ -56,6 +56,7 @@ const PHRASES: &[(&str, Meaning)] = &[
     ("avoided damage", Meaning::Flow(Role::Benefit, "avoided damage")),
     ("avoided damages", Meaning::Flow(Role::Benefit, "avoided damages")),
     ("avoided costs", Meaning::Flow(Role::Benefit, "avoided costs")),
+    ("avoided", Meaning::Flow(Role::Benefit, "avoided")),
     ("cost savings", Meaning::Flow(Role::Benefit, "cost savings")),
     ("damage", Meaning::Flow(Role::Damage, "damage")),
     ("damages", Meaning::Flow(Role::Damage, "damages")),
@@ -118,6 +119,7 @@ mod tests {
     fn headings() {
         assert_eq!(meaning("Capital cost (£k)"), Some(Meaning::Flow(Role::Cost, "cost")));
         assert_eq!(meaning("Avoided damage"), Some(Meaning::Flow(Role::Benefit, "avoided damage")));
+        assert_eq!(meaning("Flood damage avoided"), Some(Meaning::Flow(Role::Benefit, "avoided")));
         assert_eq!(meaning("Discount factor @ 3.5%"), Some(Meaning::Line(Role::Factor, "discount factor")));
         assert_eq!(meaning("Benefit-cost ratio"), Some(Meaning::Result(Role::Ratio, "benefit cost ratio")));
         assert_eq!(meaning("Total costs"), Some(Meaning::Total("total")));

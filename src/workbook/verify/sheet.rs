@@ -4,7 +4,7 @@ use std::collections::{BTreeMap, BTreeSet};
 use std::ops::Range as Span;
 
 use super::{differs, sheet_place};
-use crate::patch::{Cached, CellWrite};
+use crate::patch::{Cached, CellWrite, Settled};
 use crate::problem::{Place, Result};
 use crate::references::{Cell, Range, shift};
 use crate::splice::{Element, Kind, Token, Tokens, all_attributes, attribute, local};
@@ -85,7 +85,7 @@ impl Comparison<'_> {
             note_master(&mut self.masters, *at, text)?;
             match self.writes.get(at) {
                 None => return Ok(piece),
-                Some(CellWrite::DropValue) => {
+                Some(write) if write.keeps_formula() => {
                     self.kept.insert(*at, text);
                 }
                 Some(_) => {}
@@ -213,6 +213,10 @@ fn holds(cell: &str, write: &CellWrite) -> Result<bool> {
                 }
         }
         CellWrite::DropValue => value.is_none(),
+        CellWrite::Result(Settled::Number(wanted)) => number(*wanted),
+        CellWrite::Result(Settled::Text(_)) => kind == "str" && value.is_some(),
+        CellWrite::Result(Settled::Logical(_)) => kind == "b" && value.is_some(),
+        CellWrite::Result(Settled::Error(wanted)) => kind == "e" && value.as_ref() == Some(wanted),
     })
 }
 

@@ -6,13 +6,15 @@ use std::io::{Read, Seek};
 use calamine::{DataRef, Xlsx};
 
 use super::{differs, sheet_place};
-use crate::patch::{Cached, CellWrite};
+use crate::patch::{Cached, CellWrite, Settled};
 use crate::problem::{Place, Result};
 use crate::references::{Cell, Range};
 
 enum Wanted<'a> {
     Number(f64),
     Text(&'a str),
+    Logical(bool),
+    Error,
     Nothing,
 }
 
@@ -48,6 +50,8 @@ pub(super) fn check<R: Read + Seek>(
                 DataRef::Empty => text.is_empty(),
                 _ => false,
             },
+            Wanted::Logical(truth) => matches!(value, DataRef::Bool(found) if *found == truth),
+            Wanted::Error => matches!(value, DataRef::Error(_)),
             Wanted::Nothing => matches!(value, DataRef::Empty),
         };
         if !holds {
@@ -71,5 +75,9 @@ fn wanted(write: &CellWrite) -> Wanted<'_> {
         CellWrite::Number(number) | CellWrite::Formula(_, Cached::Number(number)) => Wanted::Number(*number),
         CellWrite::Text(text) | CellWrite::Formula(_, Cached::Text(text)) => Wanted::Text(text),
         CellWrite::Formula(_, Cached::None) | CellWrite::DropValue => Wanted::Nothing,
+        CellWrite::Result(Settled::Number(number)) => Wanted::Number(*number),
+        CellWrite::Result(Settled::Text(text)) => Wanted::Text(text),
+        CellWrite::Result(Settled::Logical(truth)) => Wanted::Logical(*truth),
+        CellWrite::Result(Settled::Error(_)) => Wanted::Error,
     }
 }

@@ -52,6 +52,9 @@ const DATA: &[(&str, &[&[Held]])] = &[
     ("N1", &[&[N(0.0), N(-100.0)], &[N(1.0), N(230.0)], &[N(2.0), N(-132.0)]]),
     ("P1", &[&[N(9000.0)], &[N(18000.0)], &[N(64000.0)]]),
     ("Q1", &[&[T("3.5%")], &[T("uk-2003")], &[T("nowhere-1")]]),
+    // Shares; a series of consumption.
+    ("P5", &[&[N(0.5)], &[N(0.25)], &[N(0.25)]]),
+    ("Q5", &[&[N(100.0)], &[N(103.0)], &[N(104.5)], &[N(109.0)], &[N(108.0)]]),
     // R1:R2 stay blank.
 ];
 
@@ -88,6 +91,8 @@ const fn case(function: &'static str, arguments: &'static [Argument]) -> Case {
 
 const LENGTH_LINE: &str = "3.9% at 3, 4% at 10, 4.2% at 30; whole horizon by length, interpolated";
 
+const RAMSEY_LINE: &str = "preference 1.5%, elasticity 1, growth 2%";
+
 /// Every function: single values, ranges in both directions, optional arguments given and left out, blanks, texts, and
 /// each error value.
 pub const CASES: &[Case] = &[
@@ -113,6 +118,7 @@ pub const CASES: &[Case] = &[
     case("RATE", &[Text("uk-2003"), Of("A2:A8")]),
     case("MEANRATE", &[Text("uk-2003"), Number(100.0)]),
     case("MEANRATE", &[Text("uk-2003"), Of("A1:A8")]),
+    case("INSTANT", &[Text("uk-2003"), Of("A1:A8")]),
     case("VALUE", &[Text("3.5%"), Of("D1:H1"), Of("D2:H2"), Number(2026.0)]),
     case("VALUE", &[Text("3.5%"), Of("D1:H1"), Of("D2:H3"), Number(2026.0), Text("flows middle")]),
     case("VALUE", &[Text("3.5%"), Of("J1:J5"), Of("K1:L5"), Number(2026.0)]),
@@ -128,11 +134,82 @@ pub const CASES: &[Case] = &[
     case("IRR", &[Of("N1:N3"), Of("O1:O3"), Number(0.15)]),
     case("IRR", &[Of("D1:H1"), Of("D2:H2"), Out, Number(0.5)]),
     case("IRR", &[Of("D1:H1"), Of("D3:H3")]),
+    case("SWITCH", &[Text("3.5%"), Text("rate"), Of("N1:N3"), Of("O1:O3")]),
+    case("SWITCH", &[Text(RAMSEY_LINE), Text("elasticity"), Of("D1:H1"), Of("D2:H2"), Number(2026.0)]),
+    case(
+        "SWITCH",
+        &[
+            Text(RAMSEY_LINE),
+            Text("growth"),
+            Of("D1:H1"),
+            Of("D2:H2"),
+            Number(2026.0),
+            Text("flows middle"),
+            Number(0.0),
+            Number(0.5),
+        ],
+    ),
+    case("SWITCH", &[Text("3.5%"), Text("growth"), Of("D1:H1"), Of("D2:H2"), Number(2026.0)]),
+    case("MULTIPLIER", &[Number(20.0), Of("O1:O3")]),
+    case(
+        "DRAWS",
+        &[
+            Text("uniform 0% to 2%"),
+            Number(1.0),
+            Text("normal mean 2% sd 0.5%"),
+            Of("D1:H1"),
+            Of("D2:H3"),
+            Number(2026.0),
+        ],
+    ),
+    case(
+        "DRAWS",
+        &[
+            Text("1%"),
+            Text("uniform 1 to 2"),
+            Number(0.02),
+            Of("J1:J5"),
+            Of("K1:K5"),
+            Number(2026.0),
+            Text("flows middle"),
+            Number(0.001),
+            Of("A1:A4"),
+            Number(500.0),
+            Number(9.0),
+        ],
+    ),
+    case("DRAWS", &[Text("wide"), Number(1.0), Number(0.02), Of("D1:H1"), Of("D2:H2"), Number(2026.0)]),
     case("RAMSEY", &[Number(0.015), Number(1.0), Number(0.02)]),
     case("RAMSEY", &[Number(0.01), Number(2.0), Number(0.02), Number(0.036)]),
     case("RAMSEY", &[Number(0.01), Of("A1:A3"), Number(0.02)]),
     case("ELASTICITY", &[Number(0.4), Number(0.25)]),
     case("ELASTICITY", &[Number(1.0), Number(0.25)]),
+    case("BRACKETS", &[Of("P5:P7"), Of("P5:P7"), Of("P1:P3")]),
+    case("HAZARD", &[Of("P5:P7")]),
+    case("HAZARD", &[Number(0.01), Text("continuous")]),
+    case("WAITING", &[Of("P1:P3"), Text("yearly")]),
+    case("GROWTH", &[Of("Q5:Q9")]),
+    case("GROWTH", &[Of("Q5:Q9"), Of("J1:J5")]),
+    case("GROWTH", &[Of("Q5:Q9"), Of("J1:J4")]),
+    case("UTILITY", &[Of("P1:P3"), Number(1.5)]),
+    case("MARGINAL", &[Of("P5:P7"), Number(1.5)]),
+    case("WELFARE", &[Of("Q5:Q9"), Of("A1:A5"), Number(0.015), Number(1.5)]),
+    case("WELFARE", &[Of("Q5:Q9"), Of("A1:A5"), Number(0.015), Number(1.0), Text("continuous")]),
+    case(
+        "COMPENSATION",
+        &[
+            Of("A2:A4"),
+            Number(100.0),
+            Number(120.0),
+            Number(10.0),
+            Number(0.015),
+            Number(1.5),
+            Text("yearly"),
+        ],
+    ),
+    case("EXACT", &[Of("D3:H3"), Of("D1:H1"), Of("D3:H3"), Number(2026.0), Number(1.5)]),
+    case("EXACT", &[Of("N1:N3"), Of("P1:P3"), Of("P5:P7"), Number(9000.0), Number(1.5)]),
+    case("EQUIVALENT", &[Of("P1:P3"), Of("P5:P7"), Number(1.5)]),
     case("WEIGHT", &[Of("P1:P3"), Number(32000.0), Number(1.3)]),
     case("REAL", &[Number(0.06), Number(0.02)]),
     case("SCHEDULE", &[Text("uk-2003")]),
@@ -141,6 +218,12 @@ pub const CASES: &[Case] = &[
     case("EXPLAIN", &[Text("3,5 % \u{2212} \u{1F30D} \"net\"")]),
     case("EXPLAIN", &[Text("3.5%"), Of("D1:H1"), Of("D2:H2"), Number(2026.0), Text("flows middle")]),
     case("EXPLAIN", &[Text("3.5%"), Of("J1:J5"), Of("L1:L5"), Number(2026.0)]),
+    case("WHY", &[Text("FACTOR"), Text("3.5%"), Of("B1:B6")]),
+    case(
+        "WHY",
+        &[Text("HENCE.SWITCH"), Text("3.5%"), Text("growth"), Of("D1:H1"), Of("D2:H2"), Number(2026.0)],
+    ),
+    case("WHY", &[Text("FACTOR"), Text("3.5%"), Of("A1:A8")]),
 ];
 
 /// Column (from 1) and row (from 1) of an address.

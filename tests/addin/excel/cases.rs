@@ -165,7 +165,7 @@ fn functions() -> Vec<String> {
     let years = || row(&numbers((0..40).map(|i| 2026.0 + f64::from(i))));
     let flows = || row(&numbers((0..40).map(|i| if i == 0 { -1234.5 } else { 61.7 + f64::from(i) / 7.0 })));
     let mut lines = Vec::new();
-    for function in ["FACTOR", "RATE", "MEANRATE"] {
+    for function in ["FACTOR", "RATE", "MEANRATE", "INSTANT"] {
         for basis in [s(LINE), s("uk-2003"), s("gamma mean 4% sd 3%"), n(0.035)] {
             lines.push(compared(function, &[basis.clone(), column(&numbers(offsets))]));
             lines.push(compared(function, &[basis, n(17.0)]));
@@ -195,8 +195,84 @@ fn functions() -> Vec<String> {
     lines.push(compared("ELASTICITY", &[n(0.4), n(0.25)]));
     lines.push(compared("WEIGHT", &[row(&numbers([18_000.0, 32_000.0, 64_000.0])), n(32_000.0), n(1.3)]));
     lines.push(compared("REAL", &[n(0.06), n(0.02)]));
+    lines.extend(uncertain(&years, &flows));
+    lines.extend(welfare());
     lines.push(compared("EXPLAIN", &[s("uk-2003")]));
     lines.push(compared("EXPLAIN", &[s(LINE), years(), flows(), n(2026.0), s("flows late")]));
+    lines.push(compared("WHY", &[s("VALUE"), s(LINE), years(), flows(), n(2026.0), s("flows late")]));
+    lines.push(compared("WHY", &[s("hence.real"), n(0.05), column(&[n(0.02), n(-1.0)])]));
+    lines.push(compared("WHY", &[s("FACTOR"), s(LINE), n(1.0)]));
+    let seeds =
+        [s("DRAWS"), s("1%"), n(1.0), n(0.02), n(1.0), n(1.0), left_out(), left_out(), left_out(), n(50.0)];
+    lines.push(compared("WHY", &[&seeds[..], &[n(20.0), n(-1.0)]].concat()));
+    lines
+}
+
+/// Switching values and draws; over many years once each, as they take long.
+fn uncertain(years: &dyn Fn() -> Value, flows: &dyn Fn() -> Value) -> Vec<String> {
+    let line = || s("preference 1.5%, elasticity 1, growth 2%");
+    let (preference, growth) = (|| s("uniform 0% to 2%"), || s("normal mean 2% sd 0.5%"));
+    let mut lines = Vec::new();
+    let mut once = |line: String| lines.push(format!("once {line}"));
+    for parameter in ["rate", "preference", "Elasticity", "growth", "luck"] {
+        once(compared("SWITCH", &[line(), s(parameter), years(), flows(), n(2026.0)]));
+    }
+    let middle = || s("flows middle, base start");
+    once(compared("SWITCH", &[line(), s("growth"), years(), flows(), n(2026.0), middle(), n(-0.1), n(0.5)]));
+    once(compared("DRAWS", &[preference(), n(1.0), growth(), years(), flows(), n(2026.0), middle()]));
+    lines.push(compared("MULTIPLIER", &[n(20.0), column(&numbers([-100.0, 120.0, 0.0]))]));
+    let both = array(2, 2, &numbers([-100.0, 104.0, -99.0, 103.0]));
+    let at = |values| row(&numbers(values));
+    let given = |draws: f64| {
+        let (percentiles, seed) = (at([10.0, 90.0]), n(7.0));
+        let years = at([0.0, 1.0]);
+        [
+            preference(),
+            n(1.0),
+            growth(),
+            years,
+            both.clone(),
+            left_out(),
+            left_out(),
+            n(0.01),
+            percentiles,
+            n(draws),
+            seed,
+        ]
+    };
+    lines.push(compared("DRAWS", &given(50.0)));
+    lines.push(compared("DRAWS", &given(0.5)));
+    let two = [at([0.0, 1.0]), at([-100.0, 104.0])];
+    lines.push(compared("SWITCH", &[&[line(), s("rate")], &two[..]].concat()));
+    lines.push(compared("SWITCH", &[&[n(0.035), s("growth")], &two[..]].concat()));
+    lines
+}
+
+/// Hazards, growth and welfare.
+fn welfare() -> Vec<String> {
+    let series = || column(&numbers([100.0, 103.0, 104.5, 109.0, 108.0]));
+    let fractions = || column(&numbers([0.5, 0.25, 0.125, 0.0625, 0.0625]));
+    let offsets = || column(&numbers([0.0, 1.0, 2.0, 3.0, 4.0]));
+    let flows = || column(&[n(-3.0), blank(), n(2.0), n(2.5), n(0.5)]);
+    let mut lines = vec![
+        compared("BRACKETS", &[fractions(), fractions(), offsets()]),
+        compared("GROWTH", &[series()]),
+        compared("GROWTH", &[series(), offsets()]),
+        compared("GROWTH", &[series(), fractions()]),
+        compared("UTILITY", &[series(), n(1.5)]),
+        compared("MARGINAL", &[series(), n(1.5)]),
+        compared("EXACT", &[flows(), series(), fractions(), n(100.0), n(1.5)]),
+        compared("EXACT", &[flows(), series(), n(1.0), n(100.0), n(1.5)]),
+        compared("EQUIVALENT", &[series(), fractions(), n(2.0)]),
+    ];
+    for compounding in [left_out(), s("yearly"), s("Continuous"), s("daily")] {
+        let last = || compounding.clone();
+        lines.push(compared("HAZARD", &[fractions(), last()]));
+        lines.push(compared("WAITING", &[row(&numbers([100.0, 2.0, 0.5])), last()]));
+        lines.push(compared("WELFARE", &[series(), offsets(), n(0.015), n(1.5), last()]));
+        let shift = [1.0, 100.0, 120.0, 10.0, 0.015, 1.5].map(n);
+        lines.push(compared("COMPENSATION", &[&shift[..], &[last()]].concat()));
+    }
     lines
 }
 

@@ -71,7 +71,7 @@ static int register_function(int count, struct value **arguments, struct value *
     }
     /* A value for the result, one for each argument, and the promise that any thread may call. */
     size_t values = strspn(types, "Q");
-    if (values < 1 || values > 1 + 5 || strcmp(types + values, "$") != 0)
+    if (values < 1 || values > 1 + 12 || strcmp(types + values, "$") != 0)
         FAULT("%s: types %s", f->name, types);
     f->arguments = (int)values - 1;
     f->procedure = (void *)GetProcAddress(xll, symbol);

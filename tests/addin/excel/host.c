@@ -16,7 +16,7 @@
 #include <string.h>
 #include <windows.h>
 
-enum { CASES_MAX = 1000, ARGUMENTS_MAX = 8 };
+enum { CASES_MAX = 1000, ARGUMENTS_MAX = 12 };
 
 typedef struct value *(WINAPI *procedure0)(void);
 typedef struct value *(WINAPI *procedure1)(struct value *);
@@ -25,6 +25,18 @@ typedef struct value *(WINAPI *procedure3)(struct value *, struct value *, struc
 typedef struct value *(WINAPI *procedure4)(struct value *, struct value *, struct value *, struct value *);
 typedef struct value *(WINAPI *procedure5)(struct value *, struct value *, struct value *, struct value *,
                                            struct value *);
+typedef struct value *(WINAPI *procedure6)(struct value *, struct value *, struct value *, struct value *,
+                                           struct value *, struct value *);
+typedef struct value *(WINAPI *procedure7)(struct value *, struct value *, struct value *, struct value *,
+                                           struct value *, struct value *, struct value *);
+typedef struct value *(WINAPI *procedure8)(struct value *, struct value *, struct value *, struct value *,
+                                           struct value *, struct value *, struct value *, struct value *);
+typedef struct value *(WINAPI *procedure11)(struct value *, struct value *, struct value *, struct value *,
+                                            struct value *, struct value *, struct value *, struct value *,
+                                            struct value *, struct value *, struct value *);
+typedef struct value *(WINAPI *procedure12)(struct value *, struct value *, struct value *, struct value *,
+                                            struct value *, struct value *, struct value *, struct value *,
+                                            struct value *, struct value *, struct value *, struct value *);
 
 /* ---- cases ---- */
 
@@ -96,7 +108,13 @@ static struct value *call(struct one_case *c)
     case 3: return ((procedure3)p)(g[0], g[1], g[2]);
     case 4: return ((procedure4)p)(g[0], g[1], g[2], g[3]);
     case 5: return ((procedure5)p)(g[0], g[1], g[2], g[3], g[4]);
-    default: return ((procedure0)p)();
+    case 6: return ((procedure6)p)(g[0], g[1], g[2], g[3], g[4], g[5]);
+    case 7: return ((procedure7)p)(g[0], g[1], g[2], g[3], g[4], g[5], g[6]);
+    case 8: return ((procedure8)p)(g[0], g[1], g[2], g[3], g[4], g[5], g[6], g[7]);
+    case 11: return ((procedure11)p)(g[0], g[1], g[2], g[3], g[4], g[5], g[6], g[7], g[8], g[9], g[10]);
+    case 12: return ((procedure12)p)(g[0], g[1], g[2], g[3], g[4], g[5], g[6], g[7], g[8], g[9], g[10], g[11]);
+    case 0: return ((procedure0)p)();
+    default: return NULL;
     }
 }
 

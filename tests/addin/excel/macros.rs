@@ -35,7 +35,7 @@ fn name_of(name: &str) -> &str {
 fn scalar(kind: &str) -> Option<(&'static str, usize)> {
     Some(match kind {
         "int32_t" | "uint32_t" => ("Long", 4),
-        "int64_t" => ("LongLong", 8),
+        "int64_t" | "uint64_t" => ("LongLong", 8),
         "size_t" => ("LongPtr", 8),
         "double" => ("Double", 8),
         "uint8_t" | "char" => ("Byte", 1),
@@ -172,7 +172,7 @@ fn the_declarations_for_macros_are_those_of_the_header() {
     assert!(held == made, "hence.bas differs from include/hence.h: run once with HENCE_ACCEPT=1 and look");
 }
 
-/// Every function of the header is declared, and the two structs have the layout of the library.
+/// Every function of the header is declared, and the structs have the layout of the library.
 #[test]
 fn the_declarations_are_complete_and_laid_out_alike() {
     let module = module();
@@ -193,6 +193,8 @@ fn the_declarations_are_complete_and_laid_out_alike() {
     };
     assert_eq!(size("hence_error"), size_of::<hence::hence_error>());
     assert_eq!(size("hence_range"), size_of::<hence::hence_range>());
+    assert_eq!(size("hence_growth"), size_of::<hence::hence_growth>());
+    assert_eq!(size("hence_spread"), size_of::<hence::hence_spread>());
     assert!(module.contains("argument As Long\r\n    padding_1 As Long\r\n    index As LongLong\r\n"));
     assert_eq!(std::mem::offset_of!(hence::hence_error, index), 16);
 }

@@ -1,16 +1,12 @@
 //! Draws of an uncertain rate: 10,000 over 300 years, beside the same work in vectorised numpy in the same run.
 
 use std::hint::black_box;
-use std::io::Write;
 use std::num::NonZeroUsize;
-use std::process::{Command, Stdio};
 use std::time::Duration;
 
-use hence_core::{
-    DrawSummary, Distribution, Draws, OptionFlows, Quantity, RateDistribution, draw_values,
-};
+use hence_core::{Distribution, DrawSummary, Draws, OptionFlows, Quantity, RateDistribution, draw_values};
 
-use crate::best;
+use crate::{best, numpy};
 
 const DRAWS: usize = 10_000;
 const YEARS: usize = 300;
@@ -53,7 +49,13 @@ pub fn draws() {
     let one = best(RUNS, || drop(black_box(draw(black_box(&options), 1))));
     row("hence, 1 thread", one, one);
     row("hence, 2 threads", best(RUNS, || drop(black_box(draw(black_box(&options), 2)))), one);
-    for line in numpy(&flows) {
+    let args = [DRAWS, YEARS, RUNS].map(|number| number.to_string());
+    let lines = flows.iter().map(|flows| flows.iter().map(f64::to_string).collect::<Vec<_>>().join(" "));
+    let theirs = numpy("draws.py", &args, &lines.map(|line| line + "\n").collect::<String>());
+    if theirs.is_empty() {
+        println!("| numpy was not found (variable HENCE_PYTHON), so it was not measured | | |");
+    }
+    for line in theirs {
         let mut cells = line.split('\t');
         let name = cells.next().expect("a name");
         let mut number = || cells.next().and_then(|cell| cell.parse::<f64>().ok()).expect("a number");
@@ -62,7 +64,8 @@ pub fn draws() {
         let ours = draw(&options, 1);
         for (values, first) in ours.values.iter().zip(ours.first.iter().map(|first| first.alone.share)) {
             let (mean, positive, alone) = (number(), number(), number());
-            let error = |share: f64| 5.0 * (2.0 * share.max(0.01) * (1.0 - share).max(0.01) / DRAWS as f64).sqrt();
+            let error =
+                |share: f64| 5.0 * (2.0 * share.max(0.01) * (1.0 - share).max(0.01) / DRAWS as f64).sqrt();
             assert!((mean - values.mean).abs() < 5.0 * 2f64.sqrt() * values.mean_error, "{line}: {values:?}");
             assert!((positive - values.positive.share).abs() < error(positive), "{line}: {values:?}");
             assert!((alone - first).abs() < error(alone), "{line}: {first}");
@@ -74,32 +77,4 @@ pub fn draws() {
 fn row(what: &str, time: Duration, one: Duration) {
     let ratio = time.as_secs_f64() / one.as_secs_f64();
     println!("| {what} | {:.2} ms | {ratio:.2} |", time.as_secs_f64() * 1e3);
-}
-
-/// What `draws.py` prints, a line for each way of doing it; says so where there is no numpy.
-fn numpy(flows: &[Vec<f64>]) -> Vec<String> {
-    let python = std::env::var_os("HENCE_PYTHON").unwrap_or_else(|| "python3".into());
-    let script = concat!(env!("CARGO_MANIFEST_DIR"), "/draws.py");
-    let asked = Command::new(&python).args(["-c", "import numpy"]).stderr(Stdio::null()).status();
-    if !asked.is_ok_and(|status| status.success()) {
-        println!("| numpy was not found (variable HENCE_PYTHON), so it was not measured | | |");
-        return Vec::new();
-    }
-    let mut child = Command::new(&python)
-        .args([script, &DRAWS.to_string(), &YEARS.to_string(), &RUNS.to_string()])
-        // One core for the products of matrices too.
-        .envs([("OPENBLAS_NUM_THREADS", "1"), ("OMP_NUM_THREADS", "1"), ("MKL_NUM_THREADS", "1")])
-        .stdin(Stdio::piped())
-        .stdout(Stdio::piped())
-        .spawn()
-        .expect("Python starts");
-    let mut input = child.stdin.take().expect("a pipe");
-    for flows in flows {
-        let text: Vec<String> = flows.iter().map(f64::to_string).collect();
-        writeln!(input, "{}", text.join(" ")).expect("Python reads");
-    }
-    drop(input);
-    let output = child.wait_with_output().expect("Python ends");
-    assert!(output.status.success(), "draws.py failed");
-    String::from_utf8(output.stdout).expect("text").lines().map(str::to_owned).collect()
 }

@@ -1,14 +1,20 @@
-//! Benchmarks: factors and calls per second, draws, cells of LibreOffice, and filling workbooks of a million cells.
+//! Benchmarks: factors and calls per second, draws, cells of LibreOffice, filling workbooks of a million cells and a
+//! shelf of a thousand small ones.
 //! `bash tests/bench/run` writes RESULTS.md.
 
+mod arrays;
 /// The large workbooks, shared with the tests of the workbook crate.
 #[path = "../../workbook/large.rs"]
 mod books;
+
 mod calc;
 mod calls;
 mod draws;
+mod shelf;
 
+use std::io::Write;
 use std::path::Path;
+use std::process::{Command, Stdio};
 use std::time::{Duration, Instant};
 
 use hence_core::{Basis, Catalogue, Where};
@@ -20,9 +26,12 @@ fn main() {
     let args: Vec<String> = std::env::args().collect();
     match args.get(1).map(String::as_str) {
         Some("draws") => draws::draws(),
+        Some("arrays") => arrays::arrays(),
         // A fill in a process of its own, so that its peak memory is its own.
         Some("fill") => fill(Path::new(&args[2])),
         Some("calc") => calc::calc(),
+        Some("shelf") => shelf::shelf(),
+        Some("make-shelf") => shelf::make(Path::new(&args[2]), args[3].parse().expect("workbooks")),
         Some("make") => {
             books::make(
                 Path::new(&args[2]),
@@ -32,10 +41,12 @@ fn main() {
         }
         _ => {
             factors();
+            arrays::arrays();
             calls::calls();
             draws::draws();
             calc::calc();
             fills();
+            shelf::shelf();
         }
     }
 }
@@ -52,10 +63,37 @@ fn best(runs: usize, mut work: impl FnMut()) -> Duration {
         .expect("at least one run")
 }
 
+/// Offsets in years, none whole.
+fn fractional() -> Vec<f64> {
+    (0..OFFSETS).map(|i| 300.0 * (i as f64 + 0.5) / OFFSETS as f64).collect()
+}
+
+/// The lines that a script of this folder prints, in one thread; none where there is no numpy.
+fn numpy(script: &str, args: &[String], input: &str) -> Vec<String> {
+    let python = std::env::var_os("HENCE_PYTHON").unwrap_or_else(|| "python3".into());
+    let asked = Command::new(&python).args(["-c", "import numpy"]).stderr(Stdio::null()).status();
+    if !asked.is_ok_and(|status| status.success()) {
+        return Vec::new();
+    }
+    let mut child = Command::new(&python)
+        .arg(Path::new(env!("CARGO_MANIFEST_DIR")).join(script))
+        .args(args)
+        // One core for the products of matrices too.
+        .envs([("OPENBLAS_NUM_THREADS", "1"), ("OMP_NUM_THREADS", "1"), ("MKL_NUM_THREADS", "1")])
+        .stdin(Stdio::piped())
+        .stdout(Stdio::piped())
+        .spawn()
+        .expect("Python starts");
+    child.stdin.take().expect("a pipe").write_all(input.as_bytes()).expect("Python reads");
+    let output = child.wait_with_output().expect("Python ends");
+    assert!(output.status.success(), "{script} failed");
+    String::from_utf8(output.stdout).expect("text").lines().map(str::to_owned).collect()
+}
+
 fn factors() {
     println!("| curve | factors per second | ns per factor |");
     println!("| --- | --- | --- |");
-    let offsets: Vec<f64> = (0..OFFSETS).map(|i| 300.0 * (i as f64 + 0.5) / OFFSETS as f64).collect();
+    let offsets = fractional();
     let mut out = vec![0.0; OFFSETS];
     for line in [
         "3.5%",
@@ -84,7 +122,7 @@ fn fills() {
         let path = folder.path().join(format!("{sheets}.xlsx"));
         books::make(&path, sheets, 1_000_000);
         let program = std::env::current_exe().expect("this program");
-        let output = std::process::Command::new(program).arg("fill").arg(&path).output().expect("it runs");
+        let output = Command::new(program).arg("fill").arg(&path).output().expect("it runs");
         assert!(output.status.success(), "{}", String::from_utf8_lossy(&output.stderr));
         let size = std::fs::metadata(&path).expect("the file").len() as f64 / 1e6;
         println!("| {what} | {size:.1} MB | {}", String::from_utf8_lossy(&output.stdout).trim());

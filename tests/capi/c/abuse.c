@@ -119,9 +119,9 @@ int main(void) {
   REFUSED(hence_schedule_line("\xc3\x28", text, sizeof text, &error), HENCE_ERR_UTF8, 1, 0);
 
   /* Arrays along the curve. */
-  int32_t (*along[3])(const hence_basis *, const double *, size_t, double *, hence_error *) = {
-      hence_factors, hence_forward_rates, hence_mean_rates};
-  for (int i = 0; i < 3; i++) {
+  int32_t (*along[4])(const hence_basis *, const double *, size_t, double *, hence_error *) = {
+      hence_factors, hence_forward_rates, hence_mean_rates, hence_instantaneous_rates};
+  for (int i = 0; i < 4; i++) {
     double past[3] = {1.0, 2.0, 75.5};
     REFUSED(along[i](NULL, t, 3, out, &error), HENCE_ERR_NULL, 1, -1);
     REFUSED(along[i](basis, NULL, 3, out, &error), HENCE_ERR_NULL, 2, -1);
@@ -299,6 +299,318 @@ int main(void) {
   REFUSED(hence_equity_weight(1.0, 1.0, 21.0, &one, &error), HENCE_ERR_RANGE, 3, -1);
   REFUSED(hence_real_rate(0.05, -1.0, &one, &error), HENCE_ERR_RANGE, 2, -1);
   REFUSED(hence_real_rate(0.05, 0.02, NULL, &error), HENCE_ERR_NULL, 3, -1);
+  REFUSED(hence_hazard_from_probability(1.0, 0, &one, &error), HENCE_ERR_RANGE, 1, -1);
+  REFUSED(hence_hazard_from_probability(NAN, 0, &one, &error), HENCE_ERR_NOT_FINITE, 1, -1);
+  REFUSED(hence_hazard_from_probability(0.01, 2, &one, &error), HENCE_ERR_RANGE, 2, -1);
+  REFUSED(hence_hazard_from_probability(0.01, 0, NULL, &error), HENCE_ERR_NULL, 3, -1);
+  REFUSED(hence_hazard_from_waiting_time(1.0, HENCE_COMPOUNDING_YEARLY, &one, &error), HENCE_ERR_RANGE, 1, -1);
+  REFUSED(hence_hazard_from_waiting_time(0.0, HENCE_COMPOUNDING_CONTINUOUS, &one, &error), HENCE_ERR_RANGE, 1, -1);
+  REFUSED(hence_hazard_from_waiting_time(INFINITY, 0, &one, &error), HENCE_ERR_NOT_FINITE, 1, -1);
+  REFUSED(hence_hazard_from_waiting_time(100.0, -1, &one, &error), HENCE_ERR_RANGE, 2, -1);
+  REFUSED(hence_hazard_from_waiting_time(100.0, 0, odd, &error), HENCE_ERR_ALIGNMENT, 3, -1);
+  int32_t (*of_consumption[2])(double, double, double *, hence_error *) = {hence_utility, hence_marginal_utility};
+  for (int i = 0; i < 2; i++) {
+    REFUSED(of_consumption[i](0.0, 1.0, &one, &error), HENCE_ERR_NO_MEANING, 1, -1);
+    REFUSED(of_consumption[i](NAN, 1.0, &one, &error), HENCE_ERR_NOT_FINITE, 1, -1);
+    REFUSED(of_consumption[i](2.0, 21.0, &one, &error), HENCE_ERR_RANGE, 2, -1);
+    REFUSED(of_consumption[i](2.0, 1.0, NULL, &error), HENCE_ERR_NULL, 3, -1);
+    REFUSED(of_consumption[i](2.0, 1.0, odd, &error), HENCE_ERR_ALIGNMENT, 3, -1);
+  }
+  REFUSED(hence_compensation(NAN, 4.0, 4.0, 1.0, 0.25, 2.0, 0, &one, &error), HENCE_ERR_NOT_FINITE, 1, -1);
+  REFUSED(hence_compensation(4.0, 4.0, 4.0, 1.0, 0.25, 2.0, 0, &one, &error), HENCE_ERR_NO_MEANING, 1, -1);
+  REFUSED(hence_compensation(2.0, 4.0, 4.0, 1.0, 0.25, 2.0, 0, &one, &error), HENCE_ERR_NO_MEANING, 1, -1);
+  REFUSED(hence_compensation(0.8, 0.0, 4.0, 1.0, 0.25, 2.0, 0, &one, &error), HENCE_ERR_NO_MEANING, 2, -1);
+  REFUSED(hence_compensation(0.8, 4.0, -1.0, 1.0, 0.25, 2.0, 0, &one, &error), HENCE_ERR_NO_MEANING, 3, -1);
+  REFUSED(hence_compensation(0.8, 4.0, 4.0, NAN, 0.25, 2.0, 0, &one, &error), HENCE_ERR_NOT_FINITE, 4, -1);
+  REFUSED(hence_compensation(0.8, 4.0, 4.0, 1.0, -1.0, 2.0, 0, &one, &error), HENCE_ERR_RANGE, 5, -1);
+  REFUSED(hence_compensation(0.8, 4.0, 4.0, 1.0, 0.25, 21.0, 0, &one, &error), HENCE_ERR_RANGE, 6, -1);
+  REFUSED(hence_compensation(0.8, 4.0, 4.0, 1.0, 0.25, 2.0, 7, &one, &error), HENCE_ERR_RANGE, 7, -1);
+  REFUSED(hence_compensation(0.8, 4.0, 4.0, 1.0, 0.25, 2.0, 0, NULL, &error), HENCE_ERR_NULL, 8, -1);
+  REFUSED(hence_switching_multiplier(NAN, 1.0, &one, &error), HENCE_ERR_NOT_FINITE, 1, -1);
+  REFUSED(hence_switching_multiplier(1.0, INFINITY, &one, &error), HENCE_ERR_NOT_FINITE, 2, -1);
+  REFUSED(hence_switching_multiplier(1.0, 0.0, &one, &error), HENCE_ERR_NO_MEANING, 2, -1);
+  REFUSED(hence_switching_multiplier(1.0, 1.0, NULL, &error), HENCE_ERR_NULL, 3, -1);
+  UNTOUCHED;
+
+  /* Paths of consumption, groups and brackets: arrays that are alike. */
+  double c[3] = {4.0, 4.0, 5.0};
+  double none_left[3] = {4.0, 0.0, 5.0};
+  double shares[3] = {0.5, 0.25, 0.25};
+  double negative[3] = {0.5, 0.75, -0.25};
+  double half[3] = {0.5, 0.5, 0.5};
+  REFUSED(hence_welfare(NULL, t, 3, 0.01, 1.5, 0, &one, &error), HENCE_ERR_NULL, 1, -1);
+  REFUSED(hence_welfare(c, NULL, 3, 0.01, 1.5, 0, &one, &error), HENCE_ERR_NULL, 2, -1);
+  REFUSED(hence_welfare(c, odd, 3, 0.01, 1.5, 0, &one, &error), HENCE_ERR_ALIGNMENT, 2, -1);
+  REFUSED(hence_welfare(c, t, huge, 0.01, 1.5, 0, &one, &error), HENCE_ERR_LENGTH, 3, -1);
+  REFUSED(hence_welfare(c, bad, 3, 0.01, 1.5, 0, &one, &error), HENCE_ERR_NOT_FINITE, 2, 2);
+  REFUSED(hence_welfare(none_left, t, 3, 0.01, 1.5, 0, &one, &error), HENCE_ERR_NO_MEANING, 1, 1);
+  REFUSED(hence_welfare(c, t, 3, -1.0, 1.5, 0, &one, &error), HENCE_ERR_RANGE, 4, -1);
+  REFUSED(hence_welfare(c, t, 3, NAN, 1.5, 1, &one, &error), HENCE_ERR_NOT_FINITE, 4, -1);
+  REFUSED(hence_welfare(c, t, 3, 0.01, -1.0, 0, &one, &error), HENCE_ERR_RANGE, 5, -1);
+  REFUSED(hence_welfare(c, t, 3, 0.01, 1.5, 2, &one, &error), HENCE_ERR_RANGE, 6, -1);
+  REFUSED(hence_welfare(c, t, 3, 0.01, 1.5, 0, NULL, &error), HENCE_ERR_NULL, 7, -1);
+  REFUSED(hence_welfare(c, t, 3, 0.01, 1.5, 0, c + 2, &error), HENCE_ERR_OVERLAP, 7, -1);
+  REFUSED(hence_welfare(c, t, 3, 0.01, 1.5, 0, t, &error), HENCE_ERR_OVERLAP, 7, -1);
+  REFUSED(hence_welfare_factors(NULL, t, 3, 4.0, 0.01, 1.5, 0, out, &error), HENCE_ERR_NULL, 1, -1);
+  REFUSED(hence_welfare_factors(c, odd, 3, 4.0, 0.01, 1.5, 0, out, &error), HENCE_ERR_ALIGNMENT, 2, -1);
+  REFUSED(hence_welfare_factors(c, t, huge, 4.0, 0.01, 1.5, 0, out, &error), HENCE_ERR_LENGTH, 3, -1);
+  REFUSED(hence_welfare_factors(none_left, t, 3, 4.0, 0.01, 1.5, 0, out, &error), HENCE_ERR_NO_MEANING, 1, 1);
+  REFUSED(hence_welfare_factors(c, t, 3, 0.0, 0.01, 1.5, 0, out, &error), HENCE_ERR_NO_MEANING, 4, -1);
+  REFUSED(hence_welfare_factors(c, t, 3, 4.0, -1.0, 1.5, 0, out, &error), HENCE_ERR_RANGE, 5, -1);
+  REFUSED(hence_welfare_factors(c, t, 3, 4.0, 0.01, 21.0, 0, out, &error), HENCE_ERR_RANGE, 6, -1);
+  REFUSED(hence_welfare_factors(c, t, 3, 4.0, 0.01, 1.5, -1, out, &error), HENCE_ERR_RANGE, 7, -1);
+  REFUSED(hence_welfare_factors(c, t, 3, 4.0, 0.01, 1.5, 0, NULL, &error), HENCE_ERR_NULL, 8, -1);
+  REFUSED(hence_welfare_factors(c, t, 3, 4.0, 0.01, 1.5, 0, c, &error), HENCE_ERR_OVERLAP, 8, -1);
+  REFUSED(hence_welfare_factors(c, t, 2, 4.0, 0.01, 1.5, 0, t + 1, &error), HENCE_ERR_OVERLAP, 8, -1);
+  for (int i = 0; i < 2; i++) {
+#define EXACT(x, c, d, n, base, eta, value)                                                                            \
+  (i == 0 ? hence_equivalent_variation(x, c, d, n, base, eta, value, &error)                                           \
+          : hence_compensating_variation(x, c, d, n, base, 0.0, eta, value, &error))
+    double x[3] = {1.0, -1.0, 1.0};
+    double ruin[3] = {1.0, -4.0, 1.0};
+    double below[3] = {1.0, 1.0, -1.0};
+    REFUSED(EXACT(NULL, c, half, 3, 4.0, 2.0, &one), HENCE_ERR_NULL, 1, -1);
+    REFUSED(EXACT(x, NULL, half, 3, 4.0, 2.0, &one), HENCE_ERR_NULL, 2, -1);
+    REFUSED(EXACT(x, c, odd, 3, 4.0, 2.0, &one), HENCE_ERR_ALIGNMENT, 3, -1);
+    REFUSED(EXACT(x, c, half, huge, 4.0, 2.0, &one), HENCE_ERR_LENGTH, 4, -1);
+    REFUSED(EXACT(bad, c, half, 3, 4.0, 2.0, &one), HENCE_ERR_NOT_FINITE, 1, 2);
+    REFUSED(EXACT(ruin, c, half, 3, 4.0, 2.0, &one), HENCE_ERR_NO_MEANING, 1, 1);
+    REFUSED(EXACT(x, none_left, half, 3, 4.0, 2.0, &one), HENCE_ERR_NO_MEANING, 2, 1);
+    REFUSED(EXACT(x, c, below, 3, 4.0, 2.0, &one), HENCE_ERR_NO_MEANING, 3, 2);
+    REFUSED(EXACT(x, c, half, 3, 0.0, 2.0, &one), HENCE_ERR_NO_MEANING, 5, -1);
+    REFUSED(EXACT(x, c, half, 3, 4.0, 21.0, &one), HENCE_ERR_RANGE, 6 + i, -1);
+    REFUSED(EXACT(x, c, half, 3, 4.0, 2.0, NULL), HENCE_ERR_NULL, 7 + i, -1);
+    REFUSED(EXACT(x, c, half, 3, 4.0, 2.0, half + 1), HENCE_ERR_OVERLAP, 7 + i, -1);
+    UNTOUCHED;
+    CHECK(EXACT(NULL, NULL, NULL, 0, 4.0, 2.0, &one) == HENCE_OK && one == 0.0);
+    one = -7.0;
+  }
+  {
+    /* So great a gain that no amount at the base is worth as much; a flow that leaves nothing at the base. */
+    double gain = 400.0, before = 4.0, factor = 2.0;
+    REFUSED(hence_equivalent_variation(&gain, &before, &factor, 1, 4.0, 2.0, &one, &error), HENCE_ERR_NO_MEANING, 1, -1);
+    REFUSED(hence_compensating_variation(&gain, &before, &factor, 1, 4.0, -4.0, 2.0, &one, &error), HENCE_ERR_NO_MEANING, 6, -1);
+    REFUSED(hence_compensating_variation(&gain, &before, &factor, 1, 4.0, NAN, 2.0, &one, &error), HENCE_ERR_NOT_FINITE, 6, -1);
+  }
+  REFUSED(hence_equally_distributed_equivalent(NULL, shares, 3, 1.0, &one, &error), HENCE_ERR_NULL, 1, -1);
+  REFUSED(hence_equally_distributed_equivalent(c, odd, 3, 1.0, &one, &error), HENCE_ERR_ALIGNMENT, 2, -1);
+  REFUSED(hence_equally_distributed_equivalent(c, shares, huge, 1.0, &one, &error), HENCE_ERR_LENGTH, 3, -1);
+  REFUSED(hence_equally_distributed_equivalent(c, shares, 0, 1.0, &one, &error), HENCE_ERR_SHAPE, 1, -1);
+  REFUSED(hence_equally_distributed_equivalent(none_left, shares, 3, 1.0, &one, &error), HENCE_ERR_NO_MEANING, 1, 1);
+  REFUSED(hence_equally_distributed_equivalent(c, negative, 3, 1.0, &one, &error), HENCE_ERR_RANGE, 2, 2);
+  REFUSED(hence_equally_distributed_equivalent(c, half, 3, 1.0, &one, &error), HENCE_ERR_RANGE, 2, -1);
+  REFUSED(hence_equally_distributed_equivalent(c, shares, 3, NAN, &one, &error), HENCE_ERR_NOT_FINITE, 4, -1);
+  REFUSED(hence_equally_distributed_equivalent(c, shares, 3, 1.0, shares, &error), HENCE_ERR_OVERLAP, 5, -1);
+  REFUSED(hence_elasticity_from_brackets(NULL, half, shares, 3, &one, &error), HENCE_ERR_NULL, 1, -1);
+  REFUSED(hence_elasticity_from_brackets(half, odd, shares, 3, &one, &error), HENCE_ERR_ALIGNMENT, 2, -1);
+  REFUSED(hence_elasticity_from_brackets(half, half, shares, huge, &one, &error), HENCE_ERR_LENGTH, 4, -1);
+  REFUSED(hence_elasticity_from_brackets(half, half, shares, 0, &one, &error), HENCE_ERR_SHAPE, 4, -1);
+  REFUSED(hence_elasticity_from_brackets(c, half, shares, 3, &one, &error), HENCE_ERR_RANGE, 1, 0);
+  REFUSED(hence_elasticity_from_brackets(half, negative, shares, 3, &one, &error), HENCE_ERR_RANGE, 2, 2);
+  REFUSED(hence_elasticity_from_brackets(half, half, bad, 3, &one, &error), HENCE_ERR_NOT_FINITE, 3, 2);
+  REFUSED(hence_elasticity_from_brackets(half, half, negative, 3, &one, &error), HENCE_ERR_RANGE, 3, 2);
+  {
+    double nobody[3] = {0.0, 0.0, 0.0};
+    REFUSED(hence_elasticity_from_brackets(half, half, nobody, 3, &one, &error), HENCE_ERR_RANGE, 3, -1);
+  }
+  REFUSED(hence_elasticity_from_brackets(half, half, shares, 3, shares + 2, &error), HENCE_ERR_OVERLAP, 5, -1);
+  REFUSED(hence_elasticity_from_brackets(half, half, shares, 3, NULL, &error), HENCE_ERR_NULL, 5, -1);
+  CHECK(c[2] == 5.0 && t[0] == 0.0 && shares[0] == 0.5 && half[1] == 0.5);
+  UNTOUCHED;
+
+  /* Growth of a series, into a struct that says its size. */
+  {
+    double series[5] = {1.0, 1.5, 1.75, 2.5, 2.75};
+    int32_t dated[5] = {2020, 2021, 2022, 2023, 2025};
+    union {
+      hence_growth growth;
+      unsigned char bytes[sizeof(hence_growth) + 8];
+    } room;
+    hence_growth *growth = &room.growth;
+    memset(&room, 0xaa, sizeof room);
+    growth->struct_size = sizeof *growth;
+    REFUSED(hence_growth_estimate(NULL, NULL, 5, growth, &error), HENCE_ERR_NULL, 1, -1);
+    REFUSED(hence_growth_estimate(odd, NULL, 5, growth, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+    REFUSED(hence_growth_estimate(series, (int32_t *)(void *)((char *)dated + 1), 4, growth, &error), HENCE_ERR_ALIGNMENT, 2, -1);
+    REFUSED(hence_growth_estimate(series, NULL, huge, growth, &error), HENCE_ERR_LENGTH, 3, -1);
+    REFUSED(hence_growth_estimate(series, NULL, 3, growth, &error), HENCE_ERR_SHAPE, 1, -1);
+    REFUSED(hence_growth_estimate(series, NULL, 0, growth, &error), HENCE_ERR_SHAPE, 1, -1);
+    REFUSED(hence_growth_estimate(series, dated, 5, growth, &error), HENCE_ERR_SYNTAX, 2, 4);
+    REFUSED(hence_growth_estimate(series, NULL, 5, NULL, &error), HENCE_ERR_NULL, 4, -1);
+    REFUSED(hence_growth_estimate(series, NULL, 5, (hence_growth *)(void *)((char *)growth + 1), &error), HENCE_ERR_ALIGNMENT, 4, -1);
+    REFUSED(hence_growth_estimate((double *)(void *)growth, NULL, 5, growth, &error), HENCE_ERR_OVERLAP, 4, -1);
+    REFUSED(hence_growth_estimate(series, (int32_t *)(void *)growth, 5, growth, &error), HENCE_ERR_OVERLAP, 4, -1);
+    series[2] = 0.0;
+    REFUSED(hence_growth_estimate(series, NULL, 5, growth, &error), HENCE_ERR_NO_MEANING, 1, 2);
+    series[2] = NAN;
+    REFUSED(hence_growth_estimate(series, NULL, 5, growth, &error), HENCE_ERR_NOT_FINITE, 1, 2);
+    series[2] = 1.75;
+    growth->struct_size = sizeof *growth - 8;
+    REFUSED(hence_growth_estimate(series, NULL, 5, growth, &error), HENCE_ERR_RANGE, 4, -1);
+    for (size_t k = 4; k < sizeof room.bytes; k++) CHECK(room.bytes[k] == 0xaa);
+    /* A larger struct, of a later version, keeps its end and its size. */
+    growth->struct_size = sizeof room.bytes;
+    CHECK(hence_growth_estimate(series, dated, 4, growth, &error) == HENCE_OK && growth->has_persistence == 1);
+    CHECK(growth->struct_size == sizeof room.bytes && fabs(growth->mean - log(2.5) / 3.0) < 1e-15);
+    for (size_t k = sizeof *growth; k < sizeof room.bytes; k++) CHECK(room.bytes[k] == 0xaa);
+    double doubling[4] = {1.0, 2.0, 4.0, 8.0};
+    CHECK(hence_growth_estimate(doubling, NULL, 4, growth, &error) == HENCE_OK && growth->has_persistence == 0);
+    CHECK(growth->persistence == 0.0 && growth->persistence_error == 0.0 && growth->trend_growth == 1.0);
+  }
+
+  /* Switching values: growth of 2.5% and an elasticity of 1.25 make the 4% at which 104 in a year are worth 100. */
+  {
+    hence_basis *ramsey = NULL;
+    double later[2] = {-100.0, 104.0};
+    double still[2] = {0.0, 0.0};
+    double touching[3] = {100.0, -220.0, 121.0};
+    CHECK(hence_basis_parse("preference 1.5%, elasticity 1, growth 2%", &ramsey, &error) == HENCE_OK);
+#define SWITCH(b, p, t, x, n, low, high, values, capacity, count)                                                      \
+  hence_switching_values(b, p, t, x, n, low, high, values, capacity, count, &error)
+    REFUSED(SWITCH(NULL, 0, t, later, 2, -0.5, 1.0, out, 3, &count), HENCE_ERR_NULL, 1, -1);
+    REFUSED(SWITCH(askew, 0, t, later, 2, -0.5, 1.0, out, 3, &count), HENCE_ERR_ALIGNMENT, 1, -1);
+    REFUSED(SWITCH(ramsey, 4, t, later, 2, -0.5, 1.0, out, 3, &count), HENCE_ERR_RANGE, 2, -1);
+    REFUSED(SWITCH(ramsey, -1, t, later, 2, -0.5, 1.0, out, 3, &count), HENCE_ERR_RANGE, 2, -1);
+    REFUSED(SWITCH(basis, HENCE_PARAMETER_GROWTH, t, later, 2, -0.5, 1.0, out, 3, &count), HENCE_ERR_UNSUPPORTED, 2, -1);
+    REFUSED(SWITCH(ramsey, 0, NULL, later, 2, -0.5, 1.0, out, 3, &count), HENCE_ERR_NULL, 3, -1);
+    REFUSED(SWITCH(ramsey, 0, odd, later, 2, -0.5, 1.0, out, 3, &count), HENCE_ERR_ALIGNMENT, 3, -1);
+    REFUSED(SWITCH(ramsey, 0, bad, touching, 3, -0.5, 1.0, out, 3, &count), HENCE_ERR_NOT_FINITE, 3, 2);
+    REFUSED(SWITCH(ramsey, 0, t, NULL, 2, -0.5, 1.0, out, 3, &count), HENCE_ERR_NULL, 4, -1);
+    REFUSED(SWITCH(ramsey, 0, t, still, 2, -0.5, 1.0, out, 3, &count), HENCE_ERR_NO_MEANING, 4, -1);
+    REFUSED(SWITCH(ramsey, 3, t, still, 2, -0.5, 1.0, out, 3, &count), HENCE_ERR_NO_MEANING, 4, -1);
+    REFUSED(SWITCH(ramsey, 0, t, touching, 3, -0.5, 1.0, out, 3, &count), HENCE_ERR_NO_MEANING, 4, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 0, -0.5, 1.0, out, 3, &count), HENCE_ERR_SHAPE, 5, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, huge, -0.5, 1.0, out, 3, &count), HENCE_ERR_LENGTH, 5, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, 1.0, -0.5, out, 3, &count), HENCE_ERR_RANGE, 6, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, NAN, 1.0, out, 3, &count), HENCE_ERR_NOT_FINITE, 6, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, INFINITY, out, 3, &count), HENCE_ERR_NOT_FINITE, 7, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, 1.0, NULL, 3, &count), HENCE_ERR_NULL, 8, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, 1.0, odd, 3, &count), HENCE_ERR_ALIGNMENT, 8, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, 1.0, later, 2, &count), HENCE_ERR_OVERLAP, 8, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, 1.0, t + 1, 2, &count), HENCE_ERR_OVERLAP, 8, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, 1.0, NULL, 0, &count), HENCE_ERR_CAPACITY, 9, 1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, 1.0, out, huge, &count), HENCE_ERR_LENGTH, 9, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, 1.0, out, 3, NULL), HENCE_ERR_NULL, 10, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, 1.0, out, 3, (void *)odd), HENCE_ERR_ALIGNMENT, 10, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, 1.0, out, 3, (void *)(out + 1)), HENCE_ERR_OVERLAP, 10, -1);
+    REFUSED(SWITCH(ramsey, 0, t, later, 2, -0.5, 1.0, out, 3, (void *)later), HENCE_ERR_OVERLAP, 10, -1);
+    CHECK(later[0] == -100.0 && later[1] == 104.0);
+    UNTOUCHED;
+    CHECK(SWITCH(ramsey, 3, t, later, 2, -0.5, 1.0, out, 3, &count) == HENCE_OK && count == 1);
+    CHECK(fabs(out[0] - 0.025) < 1e-14 && out[1] == -7.0);
+    CHECK(SWITCH(ramsey, 2, t, later, 2, 2.0, 3.0, NULL, 0, &count) == HENCE_OK && count == 0);
+    out[0] = -7.0;
+    hence_basis_free(ramsey);
+  }
+
+  /* Draws. */
+  {
+    double x[6] = {-99.0, 102.0, 0.0, 0.0, 0.0, 1.0};
+    double drawn[8] = {-7.0, -7.0, -7.0, -7.0, -7.0, -7.0, -7.0, -7.0};
+    double drawn_rates[4] = {-7.0, -7.0, -7.0, -7.0};
+    const char *wide = "normal mean 0% sd 50%";
+#define DRAW(p, h, e, g, t, x, rows, n, count, threads, rates, values)                                                 \
+  hence_draws_value(p, h, e, g, t, x, rows, n, count, 1, threads, rates, values, &error)
+    REFUSED(DRAW(NULL, NULL, "1", "2%", t, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_NULL, 1, -1);
+    REFUSED(DRAW("1%", NULL, NULL, "2%", t, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_NULL, 3, -1);
+    REFUSED(DRAW("1%", NULL, "1", NULL, t, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_NULL, 4, -1);
+    REFUSED(DRAW("1%", "\xff", "1", "2%", t, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_UTF8, 2, 0);
+    REFUSED(DRAW("normal mean 1%", NULL, "1", "2%", t, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_SYNTAX, 1, 14);
+    REFUSED(DRAW("1%", NULL, "21", "2%", t, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_RANGE, 3, -1);
+    REFUSED(DRAW("1%", NULL, "1", "0.5 at 1%, 0.6 at 2%", t, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_RANGE, 4, -1);
+    REFUSED(DRAW("1%", NULL, "1", wide, t, x, 2, 3, 1000, 1, NULL, NULL), HENCE_ERR_NULL, 13, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", NULL, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_NULL, 5, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", odd, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_ALIGNMENT, 5, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", bad, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_NOT_FINITE, 5, 2);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, NULL, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_NULL, 6, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, bad, 1, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_NOT_FINITE, 6, 2);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 0, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_SHAPE, 7, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, huge, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_LENGTH, 7, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 2, huge, 4, 1, drawn_rates, drawn), HENCE_ERR_LENGTH, 8, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 2, 3, 0, 1, drawn_rates, drawn), HENCE_ERR_SHAPE, 9, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 2, 3, huge, 1, drawn_rates, drawn), HENCE_ERR_LENGTH, 9, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 2, 3, SIZE_MAX, 1, drawn_rates, drawn), HENCE_ERR_LENGTH, 9, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 2, 3, 4, 0, drawn_rates, drawn), HENCE_ERR_RANGE, 11, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 2, 3, 4, 1, odd, drawn), HENCE_ERR_ALIGNMENT, 12, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 2, 3, 4, 1, x + 5, drawn), HENCE_ERR_OVERLAP, 12, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 2, 3, 4, 1, drawn_rates, odd), HENCE_ERR_ALIGNMENT, 13, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 2, 3, 4, 1, drawn_rates, x), HENCE_ERR_OVERLAP, 13, -1);
+    REFUSED(DRAW("1%", NULL, "1", "2%", t, x, 2, 3, 4, 1, drawn + 4, drawn), HENCE_ERR_OVERLAP, 13, -1);
+    {
+      double far[3] = {0.0, 1.0, 10001.0};
+      REFUSED(DRAW("1%", NULL, "1", "2%", far, x, 2, 3, 4, 1, drawn_rates, drawn), HENCE_ERR_DOMAIN, 5, 2);
+    }
+    {
+      /* Half of the draws are outside; and rates of -40% and less are, though their parts are not. */
+      double *many = malloc(2000 * sizeof *many);
+      many[0] = many[1999] = -7.0;
+      CHECK(DRAW("1%", NULL, "1", "normal mean -100% sd 10%", t, x, 2, 3, 1000, 1, NULL, many) == HENCE_ERR_RANGE);
+      CHECK(error.argument == 4);
+      REFUSED(DRAW("-40%", NULL, "1", "-20%", t, x, 2, 3, 1000, 1, NULL, many), HENCE_ERR_RANGE, 0, 0);
+      double large[3] = {1.7e308, 1.7e308, 1.7e308};
+      REFUSED(DRAW("1%", NULL, "1", "2%", t, large, 1, 3, 1000, 1, NULL, many), HENCE_ERR_NOT_FINITE, 0, 0);
+      CHECK(many[0] == -7.0 && many[1999] == -7.0);
+      free(many);
+    }
+    for (int i = 0; i < 8; i++) CHECK(drawn[i] == -7.0 && drawn_rates[i / 2] == -7.0);
+    CHECK(DRAW("1%", NULL, "1", "1%", t, x, 2, 3, 4, 3, drawn_rates, drawn) == HENCE_OK);
+    for (int i = 0; i < 4; i++) {
+      CHECK(drawn_rates[i] == 0.02 && fabs(drawn[i] - 1.0) < 1e-13 && fabs(drawn[4 + i] - 1.0 / 1.0404) < 1e-15);
+    }
+    CHECK(DRAW("1%", NULL, "1", "1%", NULL, NULL, 2, 0, 4, 1, NULL, drawn) == HENCE_OK && drawn[0] == 0.0 && drawn[7] == 0.0);
+
+    double values[8] = {1.0, 2.0, 3.0, 5.0, 2.0, 2.0, 1.0, 4.0};
+    double percentiles[2] = {50.0, 101.0};
+    union {
+      hence_spread spread;
+      unsigned char bytes[sizeof(hence_spread) + 8];
+    } room;
+    hence_spread *spread = &room.spread;
+    memset(&room, 0xaa, sizeof room);
+    spread->struct_size = sizeof *spread;
+    REFUSED(hence_draws_spread(NULL, 4, percentiles, 1, out, spread, &error), HENCE_ERR_NULL, 1, -1);
+    REFUSED(hence_draws_spread(odd, 4, percentiles, 1, out, spread, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+    REFUSED(hence_draws_spread(values, 0, percentiles, 1, out, spread, &error), HENCE_ERR_SHAPE, 1, -1);
+    REFUSED(hence_draws_spread(bad, 3, percentiles, 1, out, spread, &error), HENCE_ERR_NOT_FINITE, 1, 2);
+    REFUSED(hence_draws_spread(values, huge, percentiles, 1, out, spread, &error), HENCE_ERR_LENGTH, 2, -1);
+    REFUSED(hence_draws_spread(values, 4, NULL, 1, out, spread, &error), HENCE_ERR_NULL, 3, -1);
+    REFUSED(hence_draws_spread(values, 4, percentiles, 2, out, spread, &error), HENCE_ERR_RANGE, 3, 1);
+    REFUSED(hence_draws_spread(values, 4, bad, 3, out, spread, &error), HENCE_ERR_NOT_FINITE, 3, 2);
+    REFUSED(hence_draws_spread(values, 4, percentiles, huge, out, spread, &error), HENCE_ERR_LENGTH, 4, -1);
+    REFUSED(hence_draws_spread(values, 4, percentiles, 1, NULL, spread, &error), HENCE_ERR_NULL, 5, -1);
+    REFUSED(hence_draws_spread(values, 4, percentiles, 1, values + 3, spread, &error), HENCE_ERR_OVERLAP, 5, -1);
+    REFUSED(hence_draws_spread(values, 4, percentiles, 1, percentiles, spread, &error), HENCE_ERR_OVERLAP, 5, -1);
+    REFUSED(hence_draws_spread(values, 4, percentiles, 1, out, NULL, &error), HENCE_ERR_NULL, 6, -1);
+    REFUSED(hence_draws_spread(values, 4, percentiles, 1, out, (void *)odd, &error), HENCE_ERR_ALIGNMENT, 6, -1);
+    REFUSED(hence_draws_spread(values, 4, percentiles, 1, out, (void *)values, &error), HENCE_ERR_OVERLAP, 6, -1);
+    REFUSED(hence_draws_spread(values, 4, percentiles, 1, &spread->sd, spread, &error), HENCE_ERR_OVERLAP, 6, -1);
+    spread->struct_size = 4;
+    REFUSED(hence_draws_spread(values, 4, percentiles, 1, out, spread, &error), HENCE_ERR_RANGE, 6, -1);
+    for (size_t k = 4; k < sizeof room.bytes; k++) CHECK(room.bytes[k] == 0xaa);
+    UNTOUCHED;
+    spread->struct_size = sizeof room.bytes;
+    CHECK(hence_draws_spread(values, 4, percentiles, 1, out, spread, &error) == HENCE_OK && out[0] == 2.5);
+    CHECK(spread->mean == 2.75 && spread->highest == 5.0 && spread->positive == 1.0 && out[1] == -7.0);
+    for (size_t k = sizeof *spread; k < sizeof room.bytes; k++) CHECK(room.bytes[k] == 0xaa);
+    out[0] = -7.0;
+
+    double alone[2] = {-7.0, -7.0}, tied[2] = {-7.0, -7.0};
+    REFUSED(hence_draws_rank(NULL, 2, 4, alone, tied, &error), HENCE_ERR_NULL, 1, -1);
+    REFUSED(hence_draws_rank(odd, 2, 4, alone, tied, &error), HENCE_ERR_ALIGNMENT, 1, -1);
+    REFUSED(hence_draws_rank(values, 0, 4, alone, tied, &error), HENCE_ERR_SHAPE, 1, -1);
+    REFUSED(hence_draws_rank(values, 2, 0, alone, tied, &error), HENCE_ERR_SHAPE, 1, -1);
+    REFUSED(hence_draws_rank(bad, 1, 3, alone, tied, &error), HENCE_ERR_NOT_FINITE, 1, 2);
+    REFUSED(hence_draws_rank(values, huge, 4, alone, tied, &error), HENCE_ERR_LENGTH, 2, -1);
+    REFUSED(hence_draws_rank(values, 2, huge, alone, tied, &error), HENCE_ERR_LENGTH, 3, -1);
+    REFUSED(hence_draws_rank(values, 2, 4, NULL, tied, &error), HENCE_ERR_NULL, 4, -1);
+    REFUSED(hence_draws_rank(values, 2, 4, values, tied, &error), HENCE_ERR_OVERLAP, 4, -1);
+    REFUSED(hence_draws_rank(values, 2, 4, alone, NULL, &error), HENCE_ERR_NULL, 5, -1);
+    REFUSED(hence_draws_rank(values, 2, 4, alone, odd, &error), HENCE_ERR_ALIGNMENT, 5, -1);
+    REFUSED(hence_draws_rank(values, 2, 4, alone, values + 7, &error), HENCE_ERR_OVERLAP, 5, -1);
+    REFUSED(hence_draws_rank(values, 2, 4, alone, alone, &error), HENCE_ERR_OVERLAP, 5, -1);
+    CHECK(alone[0] == -7.0 && alone[1] == -7.0 && tied[0] == -7.0 && tied[1] == -7.0);
+    CHECK(hence_draws_rank(values, 2, 4, alone, tied, &error) == HENCE_OK && alone[0] == 0.5 && tied[1] == 0.25);
+  }
   UNTOUCHED;
 
   /* Cells. */

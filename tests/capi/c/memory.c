@@ -61,6 +61,22 @@ int main(void) {
   refused(hence_irr_all(offsets, flows, N, -0.5, 1.0, out, N, &count, &error), 3);
   refused(hence_offsets_from_years(offsets, N, 0.0, NULL, out, &error), 2);
   refused(hence_offsets_from_dates(dates, N, 20260401, NULL, out, &error), 2);
+  refused(hence_instantaneous_rates(basis, offsets, N, out, &error), 3);
+  hence_growth growth = {.struct_size = sizeof growth};
+  hence_spread spread = {.struct_size = sizeof spread};
+  /* Consumption, shares and values: zeros would be refused, but only where there is memory to look. */
+  refused(hence_welfare(flows, offsets, N, 0.01, 1.5, 0, &one, &error), 3);
+  refused(hence_welfare_factors(flows, offsets, N, 1.0, 0.01, 1.5, 0, out, &error), 3);
+  refused(hence_equivalent_variation(flows, flows, offsets, N, 1.0, 1.5, &one, &error), 4);
+  refused(hence_compensating_variation(flows, flows, offsets, N, 1.0, 0.0, 1.5, &one, &error), 4);
+  refused(hence_equally_distributed_equivalent(flows, offsets, N, 1.5, &one, &error), 3);
+  refused(hence_elasticity_from_brackets(flows, flows, offsets, N, &one, &error), 4);
+  refused(hence_growth_estimate(flows, NULL, N, &growth, &error), 3);
+  refused(hence_switching_values(basis, 0, offsets, flows, N, -0.5, 1.0, out, N, &count, &error), 5);
+  refused(hence_draws_value("1%", NULL, "1", "2%", offsets, flows, 1, N, 1, 1, 1, NULL, &one, &error), 7);
+  refused(hence_draws_value("1%", NULL, "1", "2%", offsets, flows, 1, 2, N, 1, 1, NULL, out, &error), 9);
+  refused(hence_draws_spread(flows, N, NULL, 0, NULL, &spread, &error), 2);
+  refused(hence_draws_rank(flows, 1, N, &one, offsets, &error), 3);
   hence_range range = {sizeof range, N, 1, offsets, NULL, NULL};
   const hence_range *given[3] = {&range, &range, &range};
   hence_answer *answer = NULL;

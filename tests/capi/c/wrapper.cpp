@@ -31,6 +31,33 @@ int main() {
     show(hence::ramsey_rate_uncertain(0.01, 2, 0.02, 0.036));
     show(hence::elasticity_from_taxes(0.42, 0.29));
     show(hence::real_rate(0.0555, 0.0203));
+    for (double x : moved.instantaneous_rates(hence::numbers(offsets, 3))) show(x);
+    const std::vector<double> four = {2, 2.5, 2.25, 3}, shares = {0.4, 0.3, 0.2, 0.1}, times = {0, 1, 2, 3};
+    show(hence::elasticity_from_brackets(shares, shares, four));
+    show(hence::hazard_from_probability(0.01, hence::compounding::continuous));
+    const hence_growth growth = hence::growth(four, {2020, 2021, 2022, 2023});
+    for (double x : {growth.mean_growth, growth.persistence, growth.persistence_error}) show(x);
+    show(hence::utility(2.5, 1.5));
+    show(hence::marginal_utility(2.5, 1.5));
+    show(hence::welfare(four, times, 0.01, 1.5));
+    show(hence::compensation(0.5, 2, 3, 10, 0.01, 1.5));
+    show(hence::compensating_variation(shares, four, shares, 2, 0.4, 1.5));
+    show(hence::equally_distributed_equivalent(four, shares, 1.5));
+    show(hence::switching_multiplier(20, -100));
+    try {
+        hence::growth(four, {2020, 2021, 2023, 2024});
+    } catch (const hence::error &e) {
+        std::printf("%s, argument %" PRId32 ", index %" PRId64 "\n", hence_status_name(e.code), e.argument, e.index);
+    }
+    /* More values than a first guess has room for: the nine changes of sign lie at 5% to 45%. */
+    const hence::basis flat("3.5%");
+    std::vector<double> flows = {1}, years(10);
+    for (int k = 1; k < 10; k++) {
+        years[static_cast<std::size_t>(k)] = k;
+        flows.push_back(0);
+        for (std::size_t i = flows.size() - 1; i > 0; i--) flows[i] -= flows[i - 1] * (1 + 0.05 * k);
+    }
+    std::printf("%zu\n", flat.switching_values(hence::parameter::rate, years, flows, 0, 1).size());
     std::printf("%s\n", hence::schedule_line("uk-2003").c_str());
     try {
         first.factors(hence::numbers(offsets, 3)); /* moved from: NULL, which the library refuses */

@@ -36,6 +36,17 @@ pub fn saved(
     books: &[(String, Vec<u8>)],
     recalculate: Recalculate,
 ) -> BTreeMap<String, Vec<u8>> {
+    saved_as(soffice, books, recalculate, "xlsx:Calc MS Excel 2007 XML")
+}
+
+/// The same in a format of LibreOffice's, by extension or `extension:filter`; each comes back under its .xlsx name.
+pub fn saved_as(
+    soffice: &Path,
+    books: &[(String, Vec<u8>)],
+    recalculate: Recalculate,
+    format: &str,
+) -> BTreeMap<String, Vec<u8>> {
+    let extension = format.split(':').next().expect("an extension");
     let folder = tempfile::tempdir().expect("a temporary folder");
     let (input, output) = (folder.path().join("in"), folder.path().join("out"));
     let user = folder.path().join("profile").join("user");
@@ -50,7 +61,7 @@ pub fn saved(
         .args(["--kill-after=10", PATIENCE])
         .arg(soffice)
         .arg(format!("-env:UserInstallation=file://{}", folder.path().join("profile").display()))
-        .args(["--headless", "--norestore", "--convert-to", "xlsx:Calc MS Excel 2007 XML", "--outdir"])
+        .args(["--headless", "--norestore", "--convert-to", format, "--outdir"])
         .arg(&output);
     for (name, bytes) in books {
         assert!(name.ends_with(".xlsx"), "{name} would be renamed");
@@ -61,7 +72,7 @@ pub fn saved(
     let said = || String::from_utf8_lossy(&run.stderr).into_owned() + &String::from_utf8_lossy(&run.stdout);
     assert!(run.status.success(), "LibreOffice ended with {}: {}", run.status, said());
     let read = |(name, _): &(String, Vec<u8>)| {
-        let bytes = std::fs::read(output.join(name));
+        let bytes = std::fs::read(output.join(name).with_extension(extension));
         (name.clone(), bytes.unwrap_or_else(|_| panic!("LibreOffice did not open {name}: {}", said())))
     };
     books.iter().map(read).collect()

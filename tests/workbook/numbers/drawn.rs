@@ -23,7 +23,7 @@ fn a_draw_values_what_the_workbook_says() {
         // 1% + 0.5% + 1.5 x 1.2%
         let rate = 0.033;
         let parts = [0.01, 0.005, 1.5, 0.012].map(|value| Some(Distribution::Fixed(value)));
-        let request = DrawsRequest { distributions: parts, roles: book.request.roles.clone() };
+        let request = DrawsRequest { distributions: parts, roles: book.request.roles.clone(), plan: None };
         let prepared = prepare(&book.package(), &request, &catalogue);
         let prepared = prepared.unwrap_or_else(|error| panic!("{}: {error}", book.words));
         assert!(prepared.problems.iter().any(|problem| problem.code == "nothing-uncertain"));

@@ -1,7 +1,7 @@
 //! Rules of precedence, warnings and limits (specification, sections 2, 3 and 6), one small workbook a rule.
 
 use hence_core::Catalogue;
-use hence_workbook::check::check;
+use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::fill::{FillRequest, Filled, fill};
 use hence_workbook::problem::Severity;
 use hence_workbook::sheets::VERDICT_AGREES;
@@ -84,7 +84,7 @@ fn a_basis_from_the_command_line_leaves_a_workbook_that_declares_what_was_used()
     let path = folder.path().join("told.xlsx");
     std::fs::write(&path, &told.bytes).unwrap();
     let package = hence_workbook::package::Package::open(&path).unwrap();
-    let report = check(&package, &[], &Catalogue::builtin()).unwrap();
+    let report = check(&package, &CheckRequest::default(), &Catalogue::builtin()).unwrap();
     assert!(report.agrees(), "{:?}", report.differences);
     // Filled again, nothing differs either.
     let again = fill(&package, &FillRequest::default(), &Catalogue::builtin()).unwrap();
@@ -326,7 +326,7 @@ fn a_companion_keeps_the_timing_and_one_basis_for_all_options() {
 fn check_compares_what_formulas_show_and_takes_no_error_for_a_missing_result() {
     let differing = |held: &str| {
         let small = plan("0.04", held, "");
-        let report = check(&small.open().0, &[], &Catalogue::builtin()).unwrap();
+        let report = check(&small.open().0, &CheckRequest::default(), &Catalogue::builtin()).unwrap();
         let found: Vec<String> = report.differences.iter().map(|d| d.found.clone()).collect();
         (found, report.problems.iter().filter(|p| p.code == "awaits-recalculation").count())
     };

@@ -37,7 +37,7 @@ fn roles_on_the_command_line_take_columns_of_tables() {
     let roles =
         [("years", "Flows[Year]"), ("cost_works", "Flows[Works '[k']]"), ("pv_works", "Flows[[#Data],[PV]]")];
     let roles = roles.map(|(role, range)| (role.to_owned(), range.to_owned()));
-    let read = in_table().resolve_with(&Options { roles: &roles, basis: None });
+    let read = in_table().resolve_with(&Options { roles: &roles, ..Options::default() });
     let read = read.unwrap_or_else(|problems| panic!("{}", lines(&problems).join("\n")));
     assert_eq!(read.choices[0].streams[0].at.to_string(), "Flows!B2:B4");
     assert_eq!(read.choices[0].streams[0].from, "--role cost_works");
@@ -128,7 +128,7 @@ fn no_cells_are_printed_that_are_not_certain() {
 #[test]
 fn a_formula_as_a_role_is_refused_with_the_address_to_give() {
     let roles = [("npv".to_owned(), "OFFSET(Plan!$A$9,0,1)".to_owned())];
-    let problems = named("", "hence_npv").resolve_with(&Options { roles: &roles, basis: None });
+    let problems = named("", "hence_npv").resolve_with(&Options { roles: &roles, ..Options::default() });
     let problems = problems.expect_err("refused");
     assert!(
         lines(&problems).iter().any(|line| line.contains("try: --role npv=Plan!B9,")),
@@ -172,7 +172,7 @@ fn roles_on_the_command_line_come_in_pieces_too() {
     for years in ["Plan!B4:C4,Plan!E4", "Plan!$B$4:$C$4,E4", "'Plan'!B4,C4,E4"] {
         let roles = [("years", years), ("cost_works", "Plan!B5:C5,E5")];
         let roles = roles.map(|(role, range)| (role.to_owned(), range.to_owned()));
-        let read = in_pieces().resolve_with(&Options { roles: &roles, basis: None });
+        let read = in_pieces().resolve_with(&Options { roles: &roles, ..Options::default() });
         let read = read.unwrap_or_else(|problems| panic!("{}", lines(&problems).join("\n")));
         assert_eq!(read.axes[0].at.to_string(), "Plan!B4:C4,E4");
         assert_eq!(read.choices[0].streams[0].at.to_string(), "Plan!B5:C5,E5");

@@ -45,15 +45,34 @@ procedures! {
     hence_xll_factor: "FACTOR" (basis, offset, base, length);
     hence_xll_rate: "RATE" (basis, year, base, length);
     hence_xll_meanrate: "MEANRATE" (basis, offset, base, length);
+    hence_xll_instant: "INSTANT" (basis, offset, base, length);
     hence_xll_value: "VALUE" (basis, years, flows, base, timing);
     hence_xll_annual: "ANNUAL" (basis, value, years, base, length);
     hence_xll_irr: "IRR" (years, flows, lowest, highest);
+    hence_xll_switch: "SWITCH" (basis, parameter, years, flows, base, timing, lowest, highest);
+    hence_xll_multiplier: "MULTIPLIER" (net, stream);
+    hence_xll_draws: "DRAWS" (
+        preference, elasticity, growth, years, flows, base, timing, hazard, percentiles, draws, seed
+    );
     hence_xll_ramsey: "RAMSEY" (rho, elasticity, growth, sd);
     hence_xll_elasticity: "ELASTICITY" (marginal, average);
+    hence_xll_brackets: "BRACKETS" (marginal, average, weights);
+    hence_xll_hazard: "HAZARD" (probability, compounding);
+    hence_xll_waiting: "WAITING" (years, compounding);
+    hence_xll_growth: "GROWTH" (consumption, years);
+    hence_xll_utility: "UTILITY" (consumption, elasticity);
+    hence_xll_marginal: "MARGINAL" (consumption, elasticity);
+    hence_xll_welfare: "WELFARE" (consumption, offsets, rho, elasticity, compounding);
+    hence_xll_compensation: "COMPENSATION" (amount, now, later, years, rho, elasticity, compounding);
+    hence_xll_exact: "EXACT" (flows, consumption, factors, base, elasticity);
     hence_xll_weight: "WEIGHT" (income, reference, elasticity);
+    hence_xll_equivalent: "EQUIVALENT" (consumption, shares, elasticity);
     hence_xll_real: "REAL" (nominal, inflation);
     hence_xll_schedule: "SCHEDULE" (id);
     hence_xll_explain: "EXPLAIN" (basis, years, flows, base, timing);
+    hence_xll_why: "WHY" (
+        function, first, second, third, fourth, fifth, sixth, seventh, eighth, ninth, tenth, eleventh
+    );
 }
 
 /// Answers one call. A panic, which would be a fault of the library, is `#VALUE!`.

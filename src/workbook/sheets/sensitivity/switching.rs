@@ -1,16 +1,24 @@
-//! Switching values: each with the net present value there, live where the curve is one yearly rate.
+//! Switching values: each with the net present value there by the second route, live where one formula can tell it.
 
-use hence_core::{Compounding, Parameter, Spec};
+use hence_core::{Parameter, Spec, Where};
 
 use super::super::lines::UNCHECKED;
-use super::Page;
+use super::super::nets::{Band, Nets};
+use super::super::second_route::{Form, Route};
+use super::{Discount, Factors, Net, Page};
+use crate::clock::base_year;
 use crate::compare::{Entry, Moved, change_words, remark};
+use crate::formulas::literal;
 use crate::patch::Cached;
+use crate::tolerance::RELATIVE;
 use crate::writer::Style;
 
 /// What a value is called whose net present value is still zero, and one whose is not.
 const ZERO: &str = "zero";
 const MOVED: &str = "moved since";
+/// The same of numbers as computed at the fill.
+const ZERO_AT_FILL: &str = "zero at the fill";
+const NOT_ZERO: &str = "not zero";
 
 impl Page<'_> {
     pub(super) fn switching(&mut self) {
@@ -86,82 +94,86 @@ impl Page<'_> {
         }
     }
 
-    /// The value put back, live.
+    /// The value put back: live where one formula can tell it, else by the second route as at the fill.
     fn proof(&mut self, c: usize, other: Option<usize>, parameter: Parameter, x: f64) {
         let cell = self.here(3);
-        let rate = match parameter {
-            Parameter::Rate => Some((cell, x)),
-            _ => self.rate_with(parameter, &cell, x),
+        let discount = match parameter {
+            Parameter::Rate => Some(Discount::flat(cell, x)),
+            _ => self.discount_with(c, other, parameter, &cell, x),
         };
-        let home = self.input.names.sensitivity.clone();
-        let live = rate.and_then(|(text, rate)| self.net_at(&home, c, other, &text, rate));
-        let Some((text, net, gross)) = live.filter(|(_, net, _)| net.is_finite()) else {
+        let net = discount.and_then(|discount| self.net_at(c, other, &discount));
+        let Some(Net { formula, value, gross }) = net.filter(|net| net.value.is_finite()) else {
             self.sheet.paragraph(self.row, 4, 6, Style::Wrapped, format!("  {UNCHECKED}"));
             return;
         };
-        let allowed = (1e-9 * gross).max(1e-12);
-        self.sheet.formula(self.row, 4, Style::Difference, format!("ABS({text})"), Cached::Number(net.abs()));
+        let allowed = (RELATIVE * gross).max(1e-12);
         self.sheet.number(self.row, 5, Style::Difference, allowed);
+        let zero = value.abs() <= allowed;
+        let Some(text) = formula else {
+            self.sheet.number(self.row, 4, Style::Difference, value.abs());
+            self.sheet.text(self.row, 6, Style::Result, if zero { ZERO_AT_FILL } else { NOT_ZERO });
+            return;
+        };
+        let distance = Cached::Number(value.abs());
+        self.sheet.formula(self.row, 4, Style::Difference, format!("ABS({text})"), distance);
         let (found, most) = (self.here(4), self.here(5));
         let text = format!("IF({found}<={most},\"{ZERO}\",\"{MOVED}\")");
-        let result = if net.abs() <= allowed { ZERO } else { MOVED };
+        let result = if zero { ZERO } else { MOVED };
         self.sheet.formula(self.row, 6, Style::Result, text, Cached::Text(result.to_owned()));
     }
 
-    /// The yearly rate with a parameter at the value of a cell, in brackets; none where the curve is not one yearly rate,
-    /// or where the flows are dated otherwise than on the checks sheet.
-    fn rate_with(&self, parameter: Parameter, cell: &str, x: f64) -> Option<(String, f64)> {
-        let declared = &self.input.outcomes[0].basis;
-        if self.told.comparison.ramsey.as_ref() != Some(&declared.canonical()) {
-            return None;
+    /// The second route to the Ramsey basis with a parameter at the value of a cell; none where there is none, or where the
+    /// flows are dated otherwise than on the checks sheet.
+    fn discount_with(
+        &self,
+        c: usize,
+        other: Option<usize>,
+        parameter: Parameter,
+        cell: &str,
+        x: f64,
+    ) -> Option<Discount> {
+        let spec = self.told.comparison.ramsey_spec.as_ref()?;
+        let reach = |c: usize| self.nets[c].as_ref().map(Nets::reach);
+        let (mut lowest, mut highest) = reach(c)?;
+        if let Some(other) = other {
+            let (low, high) = reach(other)?;
+            (lowest, highest) = (lowest.min(low), highest.max(high));
         }
-        let number = |value: f64, own: Parameter| {
-            if own == parameter { cell.to_owned() } else { crate::formulas::literal(value) }
-        };
-        let with = |value: f64, own: Parameter| if own == parameter { x } else { value };
-        let (head, growth, caution, compounding) = match declared.spec() {
-            Spec::Ramsey { preference, hazard, elasticity, growth, exact: false, compounding } => {
-                let [band] = growth.as_slice() else { return None };
-                if band.to.is_some() {
-                    return None;
-                }
-                ((*preference, *hazard, *elasticity), band.value, (0.0, 0.0), *compounding)
-            }
-            Spec::UncertainGrowth {
-                preference,
-                hazard,
-                elasticity,
-                mean,
-                sd,
-                log,
-                persistence: None,
-                compounding,
-            } => {
-                let compounding = if *log { Compounding::Continuous } else { *compounding };
-                let more = if *log { 0.0 } else { 1.0 };
-                ((*preference, *hazard, *elasticity), *mean, (*sd, more), compounding)
-            }
-            _ => return None,
-        };
-        let (preference, hazard, elasticity) = head;
-        let eta = number(elasticity, Parameter::Elasticity);
-        let mut text = format!(
-            "{}+{}+{eta}*{}",
-            number(preference, Parameter::Preference),
-            crate::formulas::literal(hazard),
-            number(growth, Parameter::Growth)
-        );
-        let e = with(elasticity, Parameter::Elasticity);
-        let (sd, more) = caution;
-        let mut rate = with(preference, Parameter::Preference) + hazard + e * with(growth, Parameter::Growth);
-        if sd != 0.0 {
-            let sd_text = crate::formulas::literal(sd);
-            text.push_str(&format!("-{eta}*({eta}+{more})*{sd_text}^2/2"));
-            rate -= e * (e + more) * sd * sd / 2.0;
-        }
-        Some(match compounding {
-            Compounding::Yearly => (format!("({text})"), rate),
-            Compounding::Continuous => (format!("(EXP({text})-1)"), rate.exp_m1()),
-        })
+        let base = base_year(&self.input.appraisal.choices[c].base.value);
+        let at = Where { base_year: base, length: Some(highest) };
+        let route = Route::of(&parameter.at(spec, x)?, &at, lowest, highest)?;
+        let bands = bands(&route, spec, parameter, cell);
+        Some(Discount { bands, factors: Factors::Route(route) })
+    }
+}
+
+/// The yearly rates of a second route as formulas, one parameter standing in a cell; none where they change every year.
+fn bands(route: &Route, spec: &Spec, parameter: Parameter, cell: &str) -> Option<Vec<Band>> {
+    let [(_, form)] = route.parts.as_slice() else { return None };
+    let (rule, preferences, growths, continuous) = match form {
+        Form::Rate { rule, preferences, x, continuous } => (rule, preferences, vec![(0.0, *x)], *continuous),
+        Form::Chain { rule, preferences, bands } => (rule, preferences, bands.clone(), false),
+        _ => return None,
+    };
+    let plus = |more: f64| {
+        if more == 0.0 { cell.to_owned() } else { format!("({cell}+{})", literal(more)) }
+    };
+    let (hazard, first) = (hazard(spec)?, growths.first()?.1);
+    let rho = if parameter == Parameter::Preference { plus(hazard) } else { literal(preferences.rho) };
+    let eta = if parameter == Parameter::Elasticity { cell.to_owned() } else { literal(preferences.eta) };
+    let rate = |growth: f64| {
+        let growth = if parameter == Parameter::Growth { plus(growth - first) } else { literal(growth) };
+        let text = rule.formula(&growth, &rho, &eta, &literal(preferences.sd));
+        if continuous { format!("(EXP({text})-1)") } else { format!("({text})") }
+    };
+    Some(growths.iter().map(|(after, growth)| Band { after: *after, rate: rate(*growth) }).collect())
+}
+
+fn hazard(spec: &Spec) -> Option<f64> {
+    match spec {
+        Spec::Ramsey { hazard, .. }
+        | Spec::UncertainGrowth { hazard, .. }
+        | Spec::GrowthRegimes { hazard, .. } => Some(*hazard),
+        _ => None,
     }
 }

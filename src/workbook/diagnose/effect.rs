@@ -1,0 +1,36 @@
+//! What a mistake does to the net present values of the options, and to their ranking.
+
+use crate::appraisal::Appraisal;
+
+/// What a mistake adds to the net present value of the option that it changes most, and the ranking where it changes.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Effect {
+    /// With the mistake less without it.
+    pub npv: Option<f64>,
+    /// The ranking in words, where the mistake changes it.
+    pub ranking: Option<String>,
+}
+
+impl Effect {
+    /// From the net present value of every option without and with the mistake.
+    pub fn of(appraisal: &Appraisal, right: &[f64], wrong: &[f64]) -> Self {
+        let changes = right.iter().zip(wrong).map(|(right, wrong)| wrong - right);
+        let npv = changes.max_by(|a, b| a.abs().total_cmp(&b.abs()));
+        let (before, after) = (order(right), order(wrong));
+        let names = |order: &[usize]| {
+            let names = order.iter().map(|&c| appraisal.choices[c].name.as_str());
+            names.collect::<Vec<_>>().join(", ")
+        };
+        let ranking = (before != after).then(|| {
+            format!("with it the options rank {}; under the declared basis {}", names(&after), names(&before))
+        });
+        Effect { npv, ranking }
+    }
+}
+
+/// The options from the highest net present value to the lowest; equal ones in their own order.
+fn order(npvs: &[f64]) -> Vec<usize> {
+    let mut order: Vec<usize> = (0..npvs.len()).collect();
+    order.sort_by(|&a, &b| npvs[b].total_cmp(&npvs[a]));
+    order
+}

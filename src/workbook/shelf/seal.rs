@@ -1,0 +1,64 @@
+//! The record that an output carries, and the seal by which a later run knows that nothing in it was changed since.
+//!
+//! The record is a part that no relationship leads to: spreadsheet programs pass over it, and leave it out when they save.
+//! It comes last in the file. Its seal is a hash of the file without it, so that both can be made again and compared.
+
+use serde::{Deserialize, Serialize};
+
+use super::Record;
+use crate::package::{Changes, Package, edit_content_types, sha256};
+use crate::problem::{Place, Problem, Result};
+
+/// The part.
+const PART: &str = "hence/record.json";
+/// Its content type.
+const PART_TYPE: &str = "application/json";
+/// The part of a package that lists content types.
+const TYPES: &str = "[Content_Types].xml";
+
+/// What the part holds.
+#[derive(Serialize, Deserialize)]
+struct Sealed {
+    seal: String,
+    record: Record,
+}
+
+/// Makes room for the part in what is to become of a package: an earlier one leaves, and its content type is listed.
+pub(crate) fn prepare(package: &Package, changes: &mut Changes) -> Result<()> {
+    if package.has(PART) {
+        changes.remove.insert(PART.to_owned());
+    }
+    let types = match changes.replace.get(TYPES) {
+        Some(types) => types.clone(),
+        None => package.part(TYPES)?.unwrap_or_default(),
+    };
+    let types = edit_content_types(&types, &[PART], &[(PART, PART_TYPE)], &[])?;
+    changes.replace.insert(TYPES.to_owned(), types);
+    Ok(())
+}
+
+/// The name of the part, for those who check what has come into a package.
+pub(crate) fn part() -> &'static str {
+    PART
+}
+
+/// A package, [prepared](prepare), with its record put in. The record's places are left out: where an output lies never
+/// enters it.
+pub(crate) fn sealed(bytes: Vec<u8>, record: &Record) -> Result<Vec<u8>> {
+    let record = Record { output: None, output_sha256: None, ..record.clone() };
+    let sealed = Sealed { seal: sha256(&bytes), record };
+    let text = serde_json::to_vec(&sealed).map_err(|error| {
+        Problem::error("package-change", Place::default(), format!("the record cannot be written: {error}"))
+    })?;
+    let bare = Package::from_bytes("record", bytes)?;
+    bare.write(&Changes { add: vec![(PART.to_owned(), text)], ..Changes::default() })
+}
+
+/// The record of an output of hence in which nothing was changed since; none of any other file.
+pub fn record_of(output: &Package) -> Option<Record> {
+    let text = output.part(PART).ok()??;
+    let Sealed { record, .. } = serde_json::from_slice(&text).ok()?;
+    let without = Changes { remove: [PART.to_owned()].into(), ..Changes::default() };
+    let again = sealed(output.write(&without).ok()?, &record).ok()?;
+    (again == output.bytes()).then_some(record)
+}

@@ -1,0 +1,101 @@
+//! The options that move most, with a chart of each measure.
+
+use crate::references::{Cell, Range, SheetRange};
+use crate::report::OptionReport;
+use crate::writer::{Chart, ChartKind, Series, Sheet, Style};
+
+use super::super::Record;
+use super::MOVERS;
+
+/// How many stand in a chart.
+const MOST: usize = 12;
+/// Rows that a chart covers.
+const CHART: u32 = 18;
+
+/// One option that moves.
+struct Mover {
+    label: String,
+    before: f64,
+    now: f64,
+}
+
+impl Mover {
+    fn change(&self) -> f64 {
+        self.now - self.before
+    }
+
+    fn share(&self) -> f64 {
+        self.change() / self.before.abs()
+    }
+}
+
+/// The sheet; none where nothing moves.
+pub(super) fn sheet(records: &[Record]) -> Option<Sheet> {
+    let movers: Vec<Mover> = records
+        .iter()
+        .flat_map(|record| record.report.options.iter().map(move |option| (record, option)))
+        .filter_map(|(record, option)| mover(record, option))
+        .collect();
+    if movers.is_empty() {
+        return None;
+    }
+    let mut sheet = Sheet::new(MOVERS);
+    for (col, width) in [52.0, 16.0, 16.0, 16.0, 12.0].into_iter().enumerate() {
+        sheet.columns(col as u32, col as u32, width);
+    }
+    sheet.text(0, 0, Style::Title, "Options whose net present value moves most");
+    let note = "From the workbook's own basis (where it states none, from what its cell held) to now. Sums of money \
+                are in each workbook's own unit, so that shares compare better across workbooks.";
+    sheet.paragraph(1, 0, 4, Style::Wrapped, note);
+    let row =
+        part(&mut sheet, 3, "By share of the value before", &movers, Mover::share, (4, "Change, share"));
+    part(&mut sheet, row, "By amount", &movers, Mover::change, (3, "Change"));
+    Some(sheet)
+}
+
+fn mover(record: &Record, option: &OptionReport) -> Option<Mover> {
+    let before = option.bridge.declared.map(|stand| stand.npv).or(option.bridge.held)?;
+    let now = option.bridge.now.npv;
+    let name = record.input.rsplit(['/', '\\']).next().unwrap_or(&record.input);
+    (before != now && before != 0.0).then(|| Mover {
+        label: format!("{name}: {}", option.called()),
+        before,
+        now,
+    })
+}
+
+/// A table of the largest by a measure with its chart; gives the next free row.
+fn part(
+    sheet: &mut Sheet,
+    mut row: u32,
+    title: &str,
+    movers: &[Mover],
+    measure: fn(&Mover) -> f64,
+    (charted, name): (u32, &str),
+) -> u32 {
+    sheet.text(row, 0, Style::Section, title);
+    row += 1;
+    for (col, text) in ["Workbook and option", "Before", "Now", "Change", "Share"].into_iter().enumerate() {
+        sheet.text(row, col as u32, Style::Heading, text);
+    }
+    let mut order: Vec<&Mover> = movers.iter().collect();
+    order.sort_by(|a, b| measure(b).abs().total_cmp(&measure(a).abs()));
+    order.truncate(MOST);
+    let first = row + 1;
+    for mover in &order {
+        row += 1;
+        sheet.text(row, 0, Style::Text, &mover.label);
+        sheet.number(row, 1, Style::Money, mover.before);
+        sheet.number(row, 2, Style::Money, mover.now);
+        sheet.number(row, 3, Style::Money, mover.change());
+        sheet.number(row, 4, Style::Rate, mover.share());
+    }
+    let column = |col: u32| SheetRange {
+        sheet: MOVERS.to_owned(),
+        range: Range { first: Cell { row: first, col }, last: Cell { row, col } },
+    };
+    let series = Series { name: name.to_owned(), x: column(0), y: column(charted) };
+    let chart = Chart { kind: ChartKind::Bars, title: title.to_owned(), series: vec![series] };
+    sheet.chart(row + 2, 0, chart);
+    row + 2 + CHART
+}

@@ -1,0 +1,129 @@
+//! The work on one workbook of a run, done in a process of its own: filled, or found done by an earlier run.
+
+use std::path::Path;
+
+use hence_core::Catalogue;
+use serde::{Deserialize, Serialize};
+
+use super::{Record, record_of, sha256};
+use crate::fill::{FillRequest, fill};
+use crate::model::Workbook;
+use crate::older;
+use crate::own::own_sheets;
+use crate::package::{Package, may_replace, same_file};
+use crate::problem::{Place, Problem, Result, WorkbookError};
+
+/// The extensions of the workbooks that are read, as a walk through folders finds them.
+pub const EXTENSIONS: [&str; 7] = ["xlsx", "xlsm", "xltx", "xltm", "xls", "xlsb", "ods"];
+
+/// What is to be done, besides where from and where to.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+pub struct Order {
+    /// What is asked for.
+    pub request: FillRequest,
+    /// Whatever is at the place of the output may be replaced.
+    pub force: bool,
+    /// An output that is what this run would make is kept; an earlier one of hence is replaced.
+    pub resume: bool,
+    /// The workbook was found in a folder, not named: one that hence filled before is passed over.
+    pub found: bool,
+}
+
+/// What became of a workbook.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+pub enum Done {
+    /// It was filled; the bytes of its output follow.
+    Filled(Record),
+    /// Its output is there already.
+    Kept(Record),
+    /// It was not filled, for what its record says.
+    Failed(Record),
+    /// It is an output of hence, by the audit sheets in it.
+    Audited,
+}
+
+/// Does it. Nothing is written: the bytes of the output come back with what became of the workbook.
+pub fn work(input: &Path, output: &Path, order: &Order, catalogue: &Catalogue) -> (Done, Option<Vec<u8>>) {
+    let mut input_sha256 = None;
+    match attempt(input, output, order, catalogue, &mut input_sha256) {
+        Ok(done) => done,
+        Err(error) => {
+            let record = Record::failed(order.request.sha256(catalogue), error.problems());
+            (Done::Failed(Record { input_sha256, ..record }), None)
+        }
+    }
+}
+
+fn attempt(
+    input: &Path,
+    output: &Path,
+    order: &Order,
+    catalogue: &Catalogue,
+    input_sha256: &mut Option<String>,
+) -> Result<(Done, Option<Vec<u8>>)> {
+    let bytes = Package::read(input)?;
+    let hash = sha256(&bytes);
+    *input_sha256 = Some(hash.clone());
+    let package = older::open(&Package::name_of(input), bytes)?;
+    if same_file(input, output) {
+        return Err(output_is_input(output));
+    }
+    if order.found && Workbook::read(&package).is_ok_and(|book| !own_sheets(&book).is_empty()) {
+        return Ok((Done::Audited, None));
+    }
+    if order.resume && output.symlink_metadata().is_ok() {
+        may_replace(output, true)?;
+        let wanted = Wanted { input: package.file_name(), input_sha256: &hash, order, catalogue };
+        if let Some(record) = kept(output, &wanted)? {
+            return Ok((Done::Kept(record), None));
+        }
+    } else {
+        may_replace(output, order.force)?;
+    }
+    let filled = fill(&package, &order.request, catalogue)?;
+    let mut record = Record::filled(&filled.meta, &filled.report);
+    record.output_sha256 = Some(sha256(&filled.bytes));
+    Ok((Done::Filled(record), Some(filled.bytes)))
+}
+
+/// That the output would be the input.
+pub(crate) fn output_is_input(output: &Path) -> WorkbookError {
+    let message = format!("the output {} is the input, which is never written", output.display());
+    Problem::error("output-is-input", Place::default(), message).hint("give --out another name").into()
+}
+
+/// What the output has to have been made from to be kept.
+struct Wanted<'a> {
+    input: &'a str,
+    input_sha256: &'a str,
+    order: &'a Order,
+    catalogue: &'a Catalogue,
+}
+
+impl Wanted<'_> {
+    fn is(&self, record: &Record) -> bool {
+        record.input == self.input
+            && record.input_sha256.as_deref() == Some(self.input_sha256)
+            && record.request_sha256 == self.order.request.sha256(self.catalogue)
+    }
+}
+
+/// The record of an output that need not be made again. One that may be replaced has none: made by hence from something
+/// else and not touched since, or damaged.
+///
+/// **Errors**: `output-changed` where another program saved it, since what a person did there would be lost.
+fn kept(output: &Path, wanted: &Wanted<'_>) -> Result<Option<Record>> {
+    let Ok(there) = Package::from_bytes("output", Package::read(output)?) else { return Ok(None) };
+    if let Some(record) = record_of(&there) {
+        let output_sha256 = Some(sha256(there.bytes()));
+        return Ok(wanted.is(&record).then_some(Record { output_sha256, ..record }));
+    }
+    let whole = there.parts().all(|part| there.part(part).is_ok());
+    if whole && !wanted.order.force {
+        let message = format!("{} is not as hence left it, or was not made by hence", output.display());
+        return Err(Problem::error("output-changed", Place::default(), message)
+            .hint("move it away, or replace it with --force")
+            .into());
+    }
+    Ok(None)
+}

@@ -1,0 +1,118 @@
+//! Resumed runs: what is done is kept, by what is in it; what is not is made, to the byte as by an unbroken run.
+
+use std::path::PathBuf;
+use std::time::SystemTime;
+
+use hence_workbook::package::{Changes, Package};
+
+use super::{Shelf, workbook};
+use crate::{code, stderr, stdout};
+
+const NAMES: [&str; 6] = ["a.xlsx", "b.xlsx", "c.xlsx", "d.xlsx", "sub/e.xlsx", "text.xlsx"];
+const ASKED: [&str; 4] = ["--basis", "3%", "--ledger", "ledger.jsonl"];
+
+/// A shelf that was filled but for one workbook, and its outputs and ledger.
+fn done() -> Shelf {
+    let shelf = Shelf::of(&NAMES);
+    shelf.put("text.xlsx", b"Dear Sir");
+    assert_eq!(code(&shelf.fill("out", &ASKED)), 1);
+    assert_eq!(shelf.files("out").len(), 5);
+    shelf
+}
+
+fn changed(path: PathBuf) -> SystemTime {
+    path.metadata().unwrap().modified().unwrap()
+}
+
+#[test]
+fn a_resumed_run_makes_what_is_not_as_it_would_make_it() {
+    let shelf = done();
+    let whole = (shelf.files("out"), std::fs::read(shelf.path("ledger.jsonl")).unwrap());
+    let first = stdout(&shelf.fill("again", &ASKED[..2]));
+    let refused = shelf.fill("out", &ASKED[..2]);
+    assert_eq!(code(&refused), 1, "without --resume nothing that is there is replaced");
+    assert!(stderr(&refused).contains("output-exists"), "{}", stderr(&refused));
+    assert!(stderr(&refused).contains("6 workbooks: 0 filled\n"), "{}", stderr(&refused));
+    let out = |name: &str| shelf.path("out").join(name);
+    // One is gone, one cut short, one of an older basis; what a dead run left lies beside them, dates say nothing.
+    std::fs::remove_file(out("b.audited.xlsx")).unwrap();
+    let bytes = &whole.0["c.audited.xlsx"];
+    std::fs::write(out("c.audited.xlsx"), &bytes[..bytes.len() / 2]).unwrap();
+    assert_eq!(code(&shelf.fill("older", &["--basis", "4%"])), 1);
+    std::fs::copy(shelf.path("older/d.audited.xlsx"), out("d.audited.xlsx")).unwrap();
+    for name in [".hence-dead01.tmp", "sub/.hence-dead02.tmp"] {
+        std::fs::write(out(name), "PK").unwrap();
+    }
+    shelf.put("a.xlsx", &workbook(0));
+    let before = changed(out("a.audited.xlsx"));
+
+    let resumed = shelf.fill("out", &[&ASKED[..], &["--resume"]].concat());
+    assert_eq!(code(&resumed), 1, "{}", stderr(&resumed));
+    assert!(stderr(&resumed).contains("3 filled, 2 filled before and kept"), "{}", stderr(&resumed));
+    assert!(shelf.files("out") == whole.0, "the outputs of an unbroken run");
+    assert!(std::fs::read(shelf.path("ledger.jsonl")).unwrap() == whole.1, "its ledger");
+    assert_eq!(stdout(&resumed), first.replace("again/", "out/"), "its report");
+    assert_eq!(changed(out("a.audited.xlsx")), before, "what is done is left alone");
+}
+
+#[test]
+fn a_changed_input_or_request_is_done_anew() {
+    let shelf = done();
+    let resume = [&ASKED[..], &["--resume"]].concat();
+    shelf.put("b.xlsx", &workbook(77));
+    let output = shelf.fill("out", &resume);
+    assert!(stderr(&output).contains("1 filled, 4 filled before and kept"), "{}", stderr(&output));
+    assert_eq!(code(&shelf.fill("new", &ASKED[..2])), 1);
+    assert!(shelf.files("out") == shelf.files("new"));
+    for more in
+        [&["--write", "values"][..], &["--by", "R. Ostrey"], &["--as-of", "May"], &["--against", "2%"]]
+    {
+        let output = shelf.fill("out", &[&resume[..], more].concat());
+        assert!(stderr(&output).contains("6 workbooks: 5 filled\n"), "{more:?}: {}", stderr(&output));
+    }
+    // The user's own schedules are part of what is asked for.
+    let house = |rate: &str| {
+        format!(
+            "id = \"house\"\ntitle = \"House rules\"\nbody = \"Ostrey\"\nyear = 2026\nplace = \"1\"\naddress = \"\"\n\
+             line = \"{rate}\"\nstatus = \"current\"\ncomplete = true\nchecked = \"an invented body\"\n"
+        )
+    };
+    std::fs::create_dir(shelf.path("rules")).unwrap();
+    for (rate, due) in [("3%", "5 filled\n"), ("3%", "0 filled, 5 filled before"), ("2%", "5 filled\n")] {
+        std::fs::write(shelf.path("rules/house.toml"), house(rate)).unwrap();
+        let output = shelf.fill("out", &["--basis", "house", "--schedules", "rules", "--resume"]);
+        assert!(stderr(&output).contains(due), "{rate}: {}", stderr(&output));
+    }
+}
+
+#[test]
+fn what_a_person_did_to_an_output_is_not_lost() {
+    let shelf = done();
+    let path = shelf.path("out/a.audited.xlsx");
+    let made = Package::open(&path).unwrap();
+    let app = "docProps/app.xml";
+    let mut bytes = made.part(app).unwrap().unwrap();
+    bytes.extend(b"<!-- saved by another program -->");
+    let saved =
+        made.write(&Changes { replace: [(app.to_owned(), bytes)].into(), ..Changes::default() }).unwrap();
+    std::fs::write(&path, &saved).unwrap();
+    let refused = shelf.fill("out", &[&ASKED[..], &["--resume"]].concat());
+    assert_eq!(code(&refused), 1);
+    let text = stderr(&refused);
+    assert!(text.contains("a.audited.xlsx is not as hence left it") && text.contains("--force"), "{text}");
+    assert!(text.contains("0 filled, 4 filled before"), "{text}");
+    assert!(std::fs::read(&path).unwrap() == saved);
+    let forced = shelf.fill("out", &[&ASKED[..], &["--resume", "--force"]].concat());
+    assert!(stderr(&forced).contains("1 filled, 4 filled before"), "{}", stderr(&forced));
+    assert!(std::fs::read(&path).unwrap() == made.bytes());
+}
+
+#[test]
+fn only_a_ledger_is_replaced_as_a_ledger() {
+    let shelf = done();
+    std::fs::write(shelf.path("ledger.jsonl"), "Dear Sir").unwrap();
+    let refused = shelf.fill("out", &[&ASKED[..], &["--resume"]].concat());
+    assert_eq!(code(&refused), 2);
+    assert!(stderr(&refused).contains("ledger.jsonl exists already"), "{}", stderr(&refused));
+    assert_eq!(std::fs::read(shelf.path("ledger.jsonl")).unwrap(), b"Dear Sir");
+}
