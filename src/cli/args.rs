@@ -134,7 +134,7 @@ pub struct Overwrite {
 
 #[derive(Debug, Args)]
 pub struct Fill {
-    /// The workbooks (.xlsx, .xlsm), or folders to find them in; - reads one from standard input
+    /// The workbooks (.xlsx, .xlsm) or templates (.xltx, .xltm), or folders to find them in; - reads one from standard input
     #[arg(required = true, value_name = "BOOK|DIR")]
     pub books: Vec<PathBuf>,
     /// Where to write: a file when it ends in .xlsx or .xlsm (one workbook only), - for standard output, else a

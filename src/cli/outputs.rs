@@ -84,10 +84,14 @@ fn audited_name(input: &Path) -> Result<PathBuf, Failure> {
     Ok(input.with_file_name(name))
 }
 
-/// The extension of an output: the input's, but for one of which only the values are read.
+/// The extension of an output: the input's, but for a template, and for one of which only the values are read.
 fn extension(input: &Path) -> Option<&OsStr> {
     let own = input.extension()?;
-    Some(if OldFormat::has_extension(own) { OsStr::new("xlsx") } else { own })
+    if own.eq_ignore_ascii_case("xltm") {
+        return Some(OsStr::new("xlsm"));
+    }
+    let other = OldFormat::has_extension(own) || own.eq_ignore_ascii_case("xltx");
+    Some(if other { OsStr::new("xlsx") } else { own })
 }
 
 /// True where `--out` names a file rather than a folder.
@@ -135,7 +139,10 @@ fn output_for(input: &Input, out: Option<&Path>, several: bool) -> Result<Output
     let name = match audited_name(input) {
         Ok(path) => path.file_name().unwrap_or_default().to_owned(),
         // An audited copy keeps its name in another folder.
-        Err(_) => input.file_name().unwrap_or_default().to_owned(),
+        Err(_) => {
+            let renamed = input.with_extension(extension(input).unwrap_or_default());
+            renamed.file_name().unwrap_or_default().to_owned()
+        }
     };
     Ok(Output::File(out.join(inside.as_deref().unwrap_or(Path::new(""))).join(name)))
 }
@@ -229,6 +236,10 @@ mod tests {
     fn names_follow_the_input() {
         assert_eq!(audited_name(Path::new("a/plan.xlsx")).unwrap(), Path::new("a/plan.audited.xlsx"));
         assert_eq!(audited_name(Path::new("v1.2.xlsm")).unwrap(), Path::new("v1.2.audited.xlsm"));
+        assert_eq!(audited_name(Path::new("plan.xltx")).unwrap(), Path::new("plan.audited.xlsx"));
+        assert_eq!(audited_name(Path::new("plan.XLTM")).unwrap(), Path::new("plan.audited.xlsm"));
+        assert!(output_for(&named("a.xltx"), Some(Path::new("o.xlsx")), false).is_ok());
+        assert!(output_for(&named("a.xltx"), Some(Path::new("o.xlsm")), false).is_err());
         assert!(audited_name(Path::new("plan.audited.xlsx")).is_err());
         assert!(names_a_file(Path::new("x.XLSX")) && !names_a_file(Path::new("x.d")));
         assert!(output_for(&named("a.xlsx"), Some(Path::new("o.xlsx")), true).is_err());

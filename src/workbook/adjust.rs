@@ -4,12 +4,13 @@ use chrono::Datelike;
 use hence_core::{Basis, PriceBasis, Tail, real_flows, real_flows_by_inflation};
 
 use crate::appraisal::{Axis, Choice, Label, Levels, Stream};
-use crate::clock::base_year;
+use crate::clock::{base_year, years_between_middles};
 use crate::outcome::ChoiceOutcome;
 use crate::problem::{Place, Problem, Result};
 use crate::valuation::{from_core, place_of};
 
-/// Years from the price base to the year of each flow. Prices are those of a whole year, wherever in it a flow stands.
+/// Years from the price base to the year of each flow. Prices are those of a whole year, wherever in it a flow stands;
+/// where columns are not a year each, those of the middle of a period.
 ///
 /// **Errors**: a price year that years counted from 0 cannot be compared with.
 pub(crate) fn years_of_prices(axis: &Axis, choice: &Choice) -> Result<Vec<f64>> {
@@ -31,6 +32,12 @@ pub(crate) fn years_of_prices(axis: &Axis, choice: &Choice) -> Result<Vec<f64>> 
         (None, Some(Label::Number(_) | Label::Offset(_))) => 0,
         (stated, _) => stated.or(base).unwrap_or(0),
     };
+    if let Some(middles) = years_between_middles(axis, &choice.base.value)? {
+        // Calendar years count from the base's, numbers from 0.
+        let counted = matches!(axis.labels.first(), Some(Label::Number(_)));
+        let shift = from - if counted { 0 } else { base.unwrap_or(0) };
+        return Ok(middles.iter().map(|n| n - f64::from(shift)).collect());
+    }
     let year = |label: &Label| match label {
         Label::Year(year) | Label::Number(year) | Label::Financial(year, _) => f64::from(*year),
         Label::Date(date) => f64::from(date.year()),

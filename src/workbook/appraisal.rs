@@ -40,6 +40,19 @@ pub struct Axis {
     pub direction: Direction,
     /// One label a cell, in order.
     pub labels: Vec<Label>,
+    /// How long each column is, where they are not a year each.
+    pub spans: Option<Spans>,
+}
+
+/// Years per column, from the role `span`.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Spans {
+    /// One cell for all columns, or a cell each.
+    pub at: Area,
+    /// The defined name it was found by.
+    pub from: String,
+    /// Years, above 0, one a column: 1/12 is a month.
+    pub lengths: Vec<f64>,
 }
 
 /// Something the workbook states, with the cell it was read from (none when it came from elsewhere).

@@ -3,7 +3,8 @@
 use chrono::{Datelike, NaiveDate};
 use hence_core::{Curve, DayCount, Position, Timing, offset_of_dates};
 
-use crate::appraisal::{Axis, Base, Label};
+use crate::appraisal::{Axis, Base, Label, Spans};
+use crate::periods::Periods;
 use crate::problem::{Place, Problem, Result};
 use crate::valuation::{cell_of, from_core};
 
@@ -117,11 +118,14 @@ pub(crate) fn base_year(base: &Base) -> Option<i32> {
 
 /// The times in force.
 pub(crate) struct Clock {
+    /// Columns are not a year each: flows stand at `offsets`, whatever a year's timing would say.
+    spanned: bool,
     /// Default where the timing does not apply.
     pub timing: Timing,
     /// Dates and offsets say themselves where a flow stands; a timing applies to all else.
     pub timed: bool,
-    /// Years after the base.
+    length: f64,
+    /// Years after the base, such that a flow of a year that begins there has the offset of the timing.
     pub years: Vec<f64>,
     /// Offsets of the flows (their years' ends where averaged).
     pub offsets: Vec<f64>,
@@ -131,19 +135,43 @@ impl Clock {
     pub fn new(axis: &Axis, base: &Base, timing: Timing) -> Result<Self> {
         let (years, timed) = years_after_base(axis, base)?;
         let timing = if timed { timing } else { Timing::default() };
+        if let (Some(spans), Some(periods)) = (&axis.spans, periods_of(axis, &years)) {
+            if timing.flows == Position::Averaged {
+                let place = Place::area(&spans.at).called(&spans.from);
+                let message =
+                    "columns that are not a year each are given, and averaged flows are means over a year";
+                return Err(Problem::error("span-role", place, message)
+                    .hint("state where flows stand in their periods: flows middle, or flows end")
+                    .into());
+            }
+            let (flows, base) = (position(timing.flows), position(timing.base));
+            let offset = |(i, length): (usize, &f64)| periods.offset(i, *length, flows, base);
+            let offsets: Vec<f64> = spans.lengths.iter().enumerate().map(offset).collect();
+            let last_years =
+                offsets.iter().zip(&spans.lengths).map(|(t, s)| t + (1.0 - flows) * (s - 1.0).max(0.0));
+            let length = last_years.fold(0.0, f64::max);
+            let years = periods.starts.iter().map(|start| start + base * (1.0 - periods.base)).collect();
+            return Ok(Clock { spanned: true, timing, timed, length, years, offsets });
+        }
         let shift = shift_of(timing);
-        let offsets = years.iter().map(|y| y + shift).collect();
-        Ok(Clock { timing, timed, years, offsets })
+        let offsets: Vec<f64> = years.iter().map(|y| y + shift).collect();
+        let length = offsets.iter().copied().fold(0.0, f64::max);
+        Ok(Clock { spanned: false, timing, timed, length, years, offsets })
     }
 
     /// The factor of the i-th year.
     pub fn factor(&self, curve: &Curve, i: usize) -> hence_core::Result<f64> {
-        curve.timed_factor(self.years[i], self.timing)
+        if self.spanned {
+            curve.factor(self.offsets[i])
+        } else {
+            curve.timed_factor(self.years[i], self.timing)
+        }
     }
 
-    /// The length of the appraisal: the largest offset, 0 where no flow stands after the base.
+    /// The length of the appraisal: the largest offset, 0 where no flow stands after the base. A period of several years
+    /// counts to where the flow of its last year would stand.
     pub fn length(&self) -> f64 {
-        self.offsets.iter().copied().fold(0.0, f64::max)
+        self.length
     }
 
     /// The offset of a year that is `years` after the base.
@@ -163,19 +191,54 @@ impl Clock {
 
 /// Position of the flows less position of the base; an averaged flow counts at its year's end.
 pub(crate) fn shift_of(timing: Timing) -> f64 {
-    let position = |p: Position| match p {
+    position(timing.flows) - position(timing.base)
+}
+
+fn position(position: Position) -> f64 {
+    match position {
         Position::Start => 0.0,
         Position::Middle => 0.5,
         Position::End | Position::Averaged => 1.0,
-    };
-    position(timing.flows) - position(timing.base)
+    }
+}
+
+/// The periods of an axis, `years` being the years from the base to its labels; none where columns are a year each.
+fn periods_of(axis: &Axis, years: &[f64]) -> Option<Periods> {
+    Some(Periods::new(axis.spans.as_ref()?, axis.labels.first()?, *years.first()?))
+}
+
+/// Years from the middle of the base period to the middle of each period; none where columns are a year each.
+pub(crate) fn years_between_middles(axis: &Axis, base: &Base) -> Result<Option<Vec<f64>>> {
+    let (years, _) = years_after_base(axis, base)?;
+    let Some((periods, spans)) = periods_of(axis, &years).zip(axis.spans.as_ref()) else { return Ok(None) };
+    let middle = |(i, length): (usize, &f64)| periods.offset(i, *length, 0.5, 0.5);
+    Ok(Some(spans.lengths.iter().enumerate().map(middle).collect()))
+}
+
+/// How long the columns are: "periods of 0.083333 to 5 years".
+fn span_words(spans: &Spans) -> String {
+    let of = |fold: fn(f64, f64) -> f64| spans.lengths.iter().copied().reduce(fold).unwrap_or(1.0);
+    let shown = |years: f64| (years * 1e6).round() / 1e6;
+    let (short, long) = (shown(of(f64::min)), shown(of(f64::max)));
+    if short == long {
+        format!("periods of {short} years")
+    } else {
+        format!("periods of {short} to {long} years")
+    }
 }
 
 /// "a flow in 2026 has factor 1.0000, in 2027 0.9662".
 pub(crate) fn sentence(axis: &Axis, clock: &Clock, factors: &[f64]) -> String {
-    let mut text = format!("a flow in {} has factor {:.4}", label_words(&axis.labels[0]), factors[0]);
+    let words = |label: &Label| match label {
+        Label::Number(n) if clock.spanned => format!("period {n}"),
+        label => label_words(label),
+    };
+    let mut text = format!("a flow in {} has factor {:.4}", words(&axis.labels[0]), factors[0]);
     if let (Some(label), Some(factor)) = (axis.labels.get(1), factors.get(1)) {
-        text.push_str(&format!(", in {} {factor:.4}", label_words(label)));
+        text.push_str(&format!(", in {} {factor:.4}", words(label)));
+    }
+    if let Some(spans) = &axis.spans {
+        return format!("{}, in {}: {text}", clock.timing, span_words(spans));
     }
     if clock.timed { format!("{}: {text}", clock.timing) } else { text }
 }

@@ -21,7 +21,7 @@ pub(crate) fn companions(
     problems: &mut Vec<Problem>,
 ) -> Vec<Option<Companion>> {
     let reaches = |outcome: &ChoiceOutcome| -> Vec<String> {
-        let reach = outcome.offsets.iter().copied().fold(0.0, f64::max);
+        let reach = outcome.length;
         let own = outcome.streams.iter().filter_map(|stream| stream.own.as_ref()).map(|own| &own.basis);
         let all = std::iter::once(&outcome.basis).chain(own).filter_map(Basis::companion);
         all.filter(|(_, beyond)| reach > *beyond).map(|(id, _)| id.to_owned()).collect()

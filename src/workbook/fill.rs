@@ -20,7 +20,7 @@ use crate::patch::{Cached, CellWrite, patch_sheet};
 use crate::plan::Stale;
 use crate::planfile::{Part, PlanFile};
 use crate::preflight::preflight;
-use crate::problem::{Problem, Result, WorkbookError};
+use crate::problem::{Place, Problem, Result, Severity, WorkbookError};
 use crate::references::{Cell, SheetRange};
 use crate::report::Report;
 use crate::settle;
@@ -117,8 +117,14 @@ pub fn fill_file(
 /// # Errors
 /// As [`fill_file`].
 pub fn fill(package: &Package, request: &FillRequest, catalogue: &Catalogue) -> Result<Filled> {
-    let noticed = preflight(package)?;
+    let mut noticed = preflight(package)?;
     package.graftable().map_err(|problem| WorkbookError::from(*problem))?;
+    if package.is_template() {
+        let message =
+            format!("the file is a template: the output is a workbook (.{})", package.format().extension());
+        let template = Problem::error("template", Place::default(), message);
+        noticed.push(Problem { severity: Severity::Note, ..template });
+    }
     let book = Workbook::read(package)?;
     let parts = match &request.plan {
         Some(plan) => plan.parts(&book)?.into_iter().map(Some).collect(),

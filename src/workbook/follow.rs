@@ -58,7 +58,8 @@ pub fn unknown(appraisal: &Appraisal, stale: &Stale, cells: &[TargetCell]) -> Ve
     let flows = appraisal.choices.iter().flat_map(|choice| &choice.streams).map(|stream| &stream.at);
     let years = appraisal.axes.iter().map(|axis| &axis.at);
     let paths = appraisal.choices.iter().filter_map(|choice| choice.welfare.consumption.as_ref());
-    let along = flows.chain(years).chain(paths.map(|path| &path.at)).flat_map(Area::pieces);
+    let spans = appraisal.axes.iter().filter_map(|axis| axis.spans.as_ref()).map(|spans| &spans.at);
+    let along = flows.chain(years).chain(spans).chain(paths.map(|path| &path.at)).flat_map(Area::pieces);
     let settings = appraisal.settings.iter().map(|setting| &setting.at);
     let levels = appraisal.choices.iter().filter_map(|choice| choice.prices.levels.as_ref()?.at.as_ref());
     let follow = along.chain(settings.chain(levels).cloned()).filter(|at| any(stale, at));

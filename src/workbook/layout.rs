@@ -2,7 +2,7 @@
 
 use std::collections::BTreeMap;
 
-use crate::appraisal::{Appraisal, Label};
+use crate::appraisal::{Appraisal, Axis, Label};
 use crate::outcome::ChoiceOutcome;
 use crate::references::{Cell, Range, SheetRange};
 use crate::sheets::SheetNames;
@@ -113,12 +113,13 @@ impl Layout {
         let mut blocks: Vec<Block> = Vec::new();
         let mut block_of = Vec::new();
         for (i, choice) in appraisal.choices.iter().enumerate() {
-            let labels = &appraisal.axes[choice.axis].labels;
+            let Axis { labels, spans, .. } = &appraisal.axes[choice.axis];
             let same = |block: &Block| {
                 let other = &appraisal.choices[block.choice];
                 let (a, b) = (&outcomes[i], &outcomes[block.choice]);
                 block.stream.is_none()
                     && appraisal.axes[other.axis].labels == *labels
+                    && appraisal.axes[other.axis].spans == *spans
                     && other.base.value == choice.base.value
                     && a.curve == b.curve
                     && a.basis == b.basis

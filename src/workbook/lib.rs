@@ -34,6 +34,7 @@ pub mod outcome;
 mod own;
 pub mod package;
 pub mod patch;
+mod periods;
 mod plan;
 pub mod planfile;
 pub mod preflight;

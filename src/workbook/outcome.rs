@@ -90,6 +90,8 @@ pub struct ChoiceOutcome {
     pub net: Vec<f64>,
     /// The same one by one as they are dated, those that follow the last year included.
     pub dated: Flows,
+    /// The length of the appraisal in years: the offset of the last flow, or of the last year of a last period of several.
+    pub length: f64,
     /// N of the annual equivalent.
     pub service_years: u32,
     /// Sum of the factors of service years 1 to N.

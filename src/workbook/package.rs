@@ -46,6 +46,22 @@ impl Format {
             Format::Xlsm => "xlsm",
         }
     }
+
+    /// The content type of its main part.
+    fn content_type(self) -> &'static str {
+        match self {
+            Format::Xlsx => "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet.main+xml",
+            Format::Xlsm => "application/vnd.ms-excel.sheet.macroEnabled.main+xml",
+        }
+    }
+
+    /// The same of a template, from which such a workbook is made.
+    fn template_type(self) -> &'static str {
+        match self {
+            Format::Xlsx => "application/vnd.openxmlformats-officedocument.spreadsheetml.template.main+xml",
+            Format::Xlsm => "application/vnd.ms-excel.template.macroEnabled.main+xml",
+        }
+    }
 }
 
 /// A workbook file in memory. Part names are matched without regard to case, as the format wants.
@@ -58,6 +74,7 @@ pub struct Package {
     types: ContentTypes,
     workbook: String,
     format: Format,
+    template: bool,
     strict: bool,
     /// The file it was made from, where that is of another format.
     origin: Option<Origin>,
@@ -107,7 +124,7 @@ impl Package {
     /// A package from the bytes of a file; `name` is the file's name, without folders.
     ///
     /// **Errors**: `file-too-large`, `empty-file`, `password-protected`, `old-format`, `other-format`,
-    /// `template`, `not-a-package`, `not-a-workbook`, `truncated`, `damaged-zip`, `zip-bomb`,
+    /// `not-a-package`, `not-a-workbook`, `truncated`, `damaged-zip`, `zip-bomb`,
     /// `encrypted-entry`, `duplicate-entry`, and those of reading XML.
     pub fn from_bytes(name: &str, bytes: Vec<u8>) -> Result<Package> {
         if bytes.len() as u64 > MAX_FILE {
@@ -142,6 +159,7 @@ impl Package {
             types: ContentTypes::default(),
             workbook: String::new(),
             format: Format::Xlsx,
+            template: false,
             strict: false,
             origin: None,
         };
@@ -183,7 +201,8 @@ impl Package {
         if !self.has(&main.target) {
             return Err(not_a_workbook(&format!("its main part {} is missing", main.target)));
         }
-        self.format = sniff::format_of(&self.content_type(&main.target).unwrap_or_default())?;
+        (self.format, self.template) =
+            sniff::format_of(&self.content_type(&main.target).unwrap_or_default())?;
         self.strict = is_strict_kind(&main.kind);
         self.workbook = main.target;
         Ok(())
@@ -202,6 +221,11 @@ impl Package {
     /// What kind of workbook it is; the output's extension follows it.
     pub fn format(&self) -> Format {
         self.format
+    }
+
+    /// Whether it is a template (.xltx, .xltm). What is written from it is a workbook: its main part is retyped.
+    pub fn is_template(&self) -> bool {
+        self.template
     }
 
     /// The names of the parts in the file's order: as stored, but without a leading slash and with
@@ -313,7 +337,7 @@ impl Package {
     ///
     /// Entries that do not change are copied with their headers and packed bytes as they are and in their
     /// order; replaced ones stay in their place; added ones come last. The same package and changes give the
-    /// same bytes: written entries bear the date 1980-01-01.
+    /// same bytes: written entries bear the date 1980-01-01. A template gives a workbook.
     ///
     /// **Errors**: `package-change` (a part to change that is not there, or to add that is),
     /// `output-too-large`.
@@ -329,6 +353,6 @@ pub fn sha256(bytes: &[u8]) -> String {
 
 fn not_a_workbook(why: &str) -> WorkbookError {
     Problem::error("not-a-workbook", Place::default(), format!("the file is no workbook: {why}"))
-        .hint("give a workbook saved as .xlsx or .xlsm")
+        .hint("give a workbook saved as .xlsx or .xlsm (or a template, .xltx or .xltm)")
         .into()
 }

@@ -20,6 +20,8 @@ pub enum Role {
     Years,
     /// The offsets of the flows, instead of years.
     Offsets,
+    /// Years per column, where columns are not a year each.
+    Span,
     /// One stream of costs.
     Cost,
     /// One stream of benefits.
@@ -159,6 +161,13 @@ pub const ROLES: &[RoleInfo] = &[
         Way::In,
         Takes::NoStream,
         "instead of years: offsets in years from the base",
+    ),
+    row(
+        Role::Span,
+        "span",
+        Way::In,
+        Takes::NoStream,
+        "years per column where columns are not a year each, in one cell or along the years: =1/12, 0.25, 1, 5",
     ),
     row(Role::Cost, "cost", Way::In, Takes::Stream, "a stream of costs, as long as the years"),
     row(Role::Benefit, "benefit", Way::In, Takes::Stream, "a stream of benefits, as long as the years"),

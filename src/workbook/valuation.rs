@@ -202,6 +202,7 @@ fn value_choice(
         timing: clock.timing,
         offsets: clock.offsets.clone(),
         forward: clock.offsets.iter().map(|t| yearly_rate(&curve, *t)).collect(),
+        length: clock.length(),
         service_years,
         annuity,
         absolute,

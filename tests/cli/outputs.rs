@@ -33,7 +33,7 @@ fn an_output_may_be_a_file_or_a_folder() {
     assert_eq!(listed, ["plan.audited.xlsx"], "the folder holds outputs and nothing else");
     let wrong = run(&["fill", book.arg(), "--out", &book.beside_arg("named.xlsm")]);
     assert_eq!(code(&wrong), 2);
-    assert!(stderr(&wrong).contains("stays .xlsx"), "{}", stderr(&wrong));
+    assert!(stderr(&wrong).contains("is .xlsx"), "{}", stderr(&wrong));
     book.is_clean(&["named.xlsx", "deep"]);
 }
 

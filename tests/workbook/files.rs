@@ -320,3 +320,45 @@ mod unix {
         }
     }
 }
+
+/// A template's content types, with the kind of its main part.
+fn template(kind: &str) -> Vec<u8> {
+    let package = Package::from_bytes("plan.xlsx", book()).unwrap();
+    let types = String::from_utf8(package.part("[Content_Types].xml").unwrap().unwrap()).unwrap();
+    let workbook = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet.main+xml";
+    assert!(types.contains(workbook));
+    let mut changes = Changes::default();
+    changes.replace.insert("[Content_Types].xml".into(), types.replace(workbook, kind).into_bytes());
+    package.write(&changes).unwrap()
+}
+
+#[test]
+fn a_template_gives_a_workbook_of_its_kind() {
+    for (kind, extension, workbook) in [
+        (
+            "application/vnd.openxmlformats-officedocument.spreadsheetml.template.main+xml",
+            "xlsx",
+            "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet.main+xml",
+        ),
+        (
+            "application/vnd.ms-excel.template.macroEnabled.main+xml",
+            "xlsm",
+            "application/vnd.ms-excel.sheet.macroEnabled.main+xml",
+        ),
+    ] {
+        let bytes = template(kind);
+        let package = Package::from_bytes("plan.xltx", bytes.clone()).unwrap();
+        assert!(package.is_template());
+        assert_eq!(package.format().extension(), extension);
+        let filled =
+            hence_workbook::fill::fill(&package, &FillRequest::default(), &Catalogue::builtin()).unwrap();
+        let made = Package::from_bytes("plan.xlsx", filled.bytes).unwrap();
+        assert!(!made.is_template());
+        assert_eq!(made.content_type(made.workbook_part()).as_deref(), Some(workbook));
+        assert!(filled.report.problems.iter().any(|problem| problem.code == "template"), "it is said");
+        // A copy with nothing changed is one too; the input is what it was.
+        let copy = Package::from_bytes("copy.xlsx", package.write(&Changes::default()).unwrap()).unwrap();
+        assert!(!copy.is_template());
+        assert!(package.bytes() == bytes);
+    }
+}

@@ -11,6 +11,7 @@ use crate::small::{Small, codes, lines};
 mod meant;
 mod options;
 mod refusals;
+mod spans;
 
 const CELLS: &str = "
     A1: 'Base | 2025

@@ -160,8 +160,12 @@ fn option(case: &Case, sheet: &str, axis: usize, strong: f64, full: bool) -> Cho
 
 pub fn appraisal(case: &Case) -> Appraisal {
     let names = ["Do nothing", "It's a liner"];
-    let axis =
-        |s: &str| Axis { at: line(case, s, 3).into(), direction: case.direction, labels: labels(case) };
+    let axis = |s: &str| Axis {
+        at: line(case, s, 3).into(),
+        direction: case.direction,
+        labels: labels(case),
+        spans: None,
+    };
     let choices: Vec<Choice> =
         vec![option(case, names[0], 0, 1.0, false), option(case, names[1], 1, 2.5, true)];
     let coverage = choices
@@ -328,6 +332,7 @@ fn outcome(case: &Case, appraisal: &Appraisal, choice: &Choice, basis: &Basis) -
         exact: None,
         timing_sentence: "a flow in 2026 has factor 1.0000, in 2027 0.9662".into(),
         forward: offsets.iter().map(|&t| (t > 0.0).then(|| curve.forward_rate(t.ceil()).unwrap())).collect(),
+        length,
         service_years,
         annuity,
         absolute: Totals {

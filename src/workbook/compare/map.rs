@@ -150,7 +150,7 @@ fn zero_row(valued: &Valued, up: Parameter, xs: &[f64], (j, y): (usize, f64)) ->
             Some(baseline) => outcome.dated.less(&valued.outcomes[baseline].dated),
             None => outcome.dated.clone(),
         };
-        let length = Some(outcome.offsets.iter().copied().fold(0.0, f64::max));
+        let length = Some(outcome.length);
         let at = Where { base_year: base_year(&valued.appraisal.choices[option].base.value), length };
         let preference = Parameter::Preference;
         let found = up
@@ -172,7 +172,7 @@ fn zero_row(valued: &Valued, up: Parameter, xs: &[f64], (j, y): (usize, f64)) ->
 fn worth_of_all(valued: &Valued, change: &dyn Fn(&Spec) -> Option<Spec>) -> Option<Vec<Worth>> {
     let mut values = Vec::with_capacity(valued.outcomes.len());
     for (choice, outcome) in valued.appraisal.choices.iter().zip(&valued.outcomes) {
-        let length = Some(outcome.offsets.iter().copied().fold(0.0, f64::max));
+        let length = Some(outcome.length);
         let at = Where { base_year: base_year(&choice.base.value), length };
         let curve = change(outcome.basis.spec())?.curve(&at).ok()?;
         values.push(worth(&outcome.dated, &curve)?);

@@ -162,7 +162,7 @@ fn parameter_entry(
 /// What the curves of an option and its opposite may need to know: the base year, and the longer of their lengths.
 fn place(valued: &Valued, option: usize, opposite: Option<usize>) -> Where {
     let choices = std::iter::once(option).chain(opposite);
-    let length = choices.flat_map(|i| valued.outcomes[i].offsets.iter().copied()).fold(0.0, f64::max);
+    let length = choices.map(|i| valued.outcomes[i].length).fold(0.0, f64::max);
     Where { base_year: base_year(&valued.appraisal.choices[option].base.value), length: Some(length) }
 }
 
@@ -220,7 +220,7 @@ pub(super) fn worths_at(valued: &Valued, change: &dyn Fn(&Spec) -> Option<Spec>)
     let choices = valued.appraisal.choices.iter().zip(&valued.outcomes);
     choices
         .map(|(choice, outcome): (&Choice, &ChoiceOutcome)| {
-            let length = Some(outcome.offsets.iter().copied().fold(0.0, f64::max));
+            let length = Some(outcome.length);
             let at = Where { base_year: base_year(&choice.base.value), length };
             let curve = change(outcome.basis.spec())?.curve(&at).ok()?;
             let worth = worth_on(&valued.appraisal, choice, outcome, &curve).ok();

@@ -9,6 +9,7 @@ use flate2::write::DeflateEncoder;
 use tempfile::NamedTempFile;
 
 use super::container::moved_record;
+use super::edit::edit_content_types;
 use super::{Package, key};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 
@@ -41,10 +42,12 @@ const COMPRESSION: Compression = Compression::new(4);
 const DOS_DATE: u16 = 0x0021;
 
 pub(super) fn write(package: &Package, changes: &Changes) -> Result<Vec<u8>> {
-    let replace: BTreeMap<String, &Vec<u8>> =
+    let mut replace: BTreeMap<String, &Vec<u8>> =
         changes.replace.iter().map(|(name, bytes)| (key(name), bytes)).collect();
     let remove: BTreeSet<String> = changes.remove.iter().map(|name| key(name)).collect();
     check(package, &replace, &remove, changes)?;
+    let retyped = if package.template { Some(workbook_types(package, changes)?) } else { None };
+    replace.extend(retyped.iter().map(|types| (key(TYPES), types)));
 
     let mut zip = Zip::with_capacity(package.bytes.len() + package.bytes.len() / 4);
     for entry in &package.entries {
@@ -61,6 +64,24 @@ pub(super) fn write(package: &Package, changes: &Changes) -> Result<Vec<u8>> {
         zip.add(name.trim_start_matches('/'), bytes)?;
     }
     zip.finish()
+}
+
+/// The list of content types.
+const TYPES: &str = "[Content_Types].xml";
+
+/// The content types with a template's main part as that of a workbook.
+fn workbook_types(package: &Package, changes: &Changes) -> Result<Vec<u8>> {
+    let changed = changes.replace.iter().find(|(name, _)| key(name) == key(TYPES));
+    let types = match changed {
+        Some((_, types)) => types.clone(),
+        None => package.part(TYPES)?.unwrap_or_default(),
+    };
+    let (old, kind) = (package.format.template_type(), package.format.content_type());
+    // In its place, so that all else keeps its order.
+    match types.windows(old.len()).position(|text| text.eq_ignore_ascii_case(old.as_bytes())) {
+        Some(at) => Ok([&types[..at], kind.as_bytes(), &types[at + old.len()..]].concat()),
+        None => edit_content_types(&types, &[&package.workbook], &[(&package.workbook, kind)], &[]),
+    }
 }
 
 fn check(

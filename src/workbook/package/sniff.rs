@@ -61,23 +61,17 @@ pub(super) fn other_package(package: &Package) -> WorkbookError {
     not_a_workbook("it is a zip file without the list of content types that a workbook has")
 }
 
-/// The format by the main part's content type.
-pub(super) fn format_of(kind: &str) -> Result<Format> {
-    let kind = kind.to_ascii_lowercase();
-    match kind.as_str() {
-        "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet.main+xml" => {
-            return Ok(Format::Xlsx);
+/// The format by the main part's content type, and whether it is that of a template.
+pub(super) fn format_of(kind: &str) -> Result<(Format, bool)> {
+    let lower = kind.to_ascii_lowercase();
+    for format in [Format::Xlsx, Format::Xlsm] {
+        for (known, template) in [(format.content_type(), false), (format.template_type(), true)] {
+            if lower == known.to_ascii_lowercase() {
+                return Ok((format, template));
+            }
         }
-        "application/vnd.ms-excel.sheet.macroenabled.main+xml" => return Ok(Format::Xlsm),
-        _ => {}
     }
-    if kind.contains("template") && (kind.contains("spreadsheetml") || kind.contains("ms-excel")) {
-        return Err(refuse(
-            "template",
-            "the file is a workbook template",
-            "make a workbook from it and give that",
-        ));
-    }
+    let kind = lower;
     if kind.contains("ms-excel.addin") {
         return Err(refuse("other-format", "the file is an add-in and no workbook", SAVE_AS));
     }

@@ -6,13 +6,13 @@ use crate::appraisal::{Axis, Choice, Stream, StreamKind};
 use crate::decide::Rule;
 use crate::problem::{Place, Problem};
 use crate::reading::Value;
-use crate::references::SheetRange;
+use crate::references::Area;
 use crate::roles::{PREFIX, ROLES, Role, key};
 
 use super::cells::shown;
 use super::find::Named;
 use super::groups::{Group, Split, names_of};
-use super::{Context, Options, counted, prices, settings, streams, targets, texts, welfare, years};
+use super::{Context, Options, counted, prices, settings, spans, streams, targets, texts, welfare, years};
 
 /// The options, and what they share.
 pub(super) struct Built {
@@ -26,17 +26,19 @@ pub(super) struct Built {
 pub(super) fn build(context: &mut Context, split: &Split, told: &Options) -> Built {
     let mut built = Built { axes: Vec::new(), choices: Vec::new(), baseline: None, decide: Rule::default() };
     report_missing(context, split, told);
-    let mut read: BTreeMap<SheetRange, Option<usize>> = BTreeMap::new();
+    let mut read: BTreeMap<(Area, Option<Area>), Option<usize>> = BTreeMap::new();
     for group in &split.groups {
         let Some(years) = years_of(context, split, group) else { continue };
-        let axis = match read.get(&years.at) {
+        let span = split.of(group, Role::Span);
+        let cells = (years.area.clone(), span.map(|span| span.area.clone()));
+        let axis = match read.get(&cells) {
             Some(axis) => *axis,
             None => {
-                let axis = years::axis(context, years).map(|axis| {
+                let axis = years::axis(context, years, span).map(|axis| {
                     built.axes.push(axis);
                     built.axes.len() - 1
                 });
-                read.insert(years.at.clone(), axis);
+                read.insert(cells, axis);
                 axis
             }
         };
@@ -52,6 +54,9 @@ pub(super) fn build(context: &mut Context, split: &Split, told: &Options) -> Bui
         built.baseline = baseline(context, split);
         built.decide = decide(context, split);
         check_flows(context, split, &built.choices);
+    }
+    for choice in &built.choices {
+        spans::check(context, choice, &built.axes[choice.axis]);
     }
     targets::check(context, &built.choices, &built.axes);
     built

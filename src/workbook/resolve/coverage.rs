@@ -207,6 +207,9 @@ fn lines(
 /// The roles of every named row in words; with several options, each with its option.
 fn roles(built: &Built) -> BTreeMap<Area, Vec<String>> {
     let mut roles: BTreeMap<Area, Vec<String>> = BTreeMap::new();
+    for spans in built.axes.iter().filter_map(|axis| axis.spans.as_ref()) {
+        roles.insert(spans.at.clone(), vec!["years per column".to_owned()]);
+    }
     let many = built.choices.len() > 1;
     for choice in &built.choices {
         let mut add = |at: Area, words: String| {

@@ -294,6 +294,7 @@ fn in_pieces(named: &Named) -> Option<Problem> {
         role,
         Role::Years
             | Role::Offsets
+            | Role::Span
             | Role::Cost
             | Role::Benefit
             | Role::Flow

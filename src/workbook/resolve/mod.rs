@@ -14,6 +14,7 @@ mod prices;
 mod report;
 mod series;
 mod settings;
+mod spans;
 mod streams;
 mod targets;
 mod texts;

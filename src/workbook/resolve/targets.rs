@@ -210,6 +210,11 @@ pub(super) fn check(context: &mut Context, choices: &[Choice], axes: &[Axis]) {
 fn inputs(choices: &[Choice], axes: &[Axis]) -> Vec<(Area, String)> {
     let mut along: Vec<(Area, String)> =
         axes.iter().map(|axis| (axis.at.clone(), "the years".to_owned())).collect();
+    along.extend(
+        axes.iter()
+            .filter_map(|axis| axis.spans.as_ref())
+            .map(|spans| (spans.at.clone(), spans.from.clone())),
+    );
     let mut inputs: Vec<(SheetRange, String)> = Vec::new();
     for choice in choices {
         inputs.extend(choice.base.at.iter().map(|at| (at.clone(), choice.base.from.clone())));

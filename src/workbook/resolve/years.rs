@@ -12,7 +12,7 @@ use crate::roles::Role;
 
 use super::cells::{error_value, number, one, shown, single, text_as_number};
 use super::find::Named;
-use super::{Checked, Context, texts};
+use super::{Checked, Context, spans, texts};
 
 /// The longest row of years: calendar years run from 1000 to 9999.
 const MAX_YEARS: u64 = 9_000;
@@ -26,8 +26,8 @@ pub(super) fn direction(at: &SheetRange) -> Option<Direction> {
     }
 }
 
-/// Reads the years (or the offsets) of a role, or reports why they are none.
-pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
+/// Reads the years (or the offsets) of a role with the years per column, or reports why they are none.
+pub(super) fn axis(context: &mut Context, named: &Named, span: Option<&Named>) -> Option<Axis> {
     let count = named.area.len();
     let Some(direction) = direction(&named.at).filter(|_| (2..=MAX_YEARS).contains(&count)) else {
         let (rows, cols) = (named.at.range.rows(), named.at.range.cols());
@@ -55,7 +55,9 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
         match read {
             Ok(label) => {
                 let last = labels.last().and_then(Option::as_ref);
-                if let Some(problem) = last.and_then(|last| step(last, &label, place)) {
+                if let Some(problem) = last.and_then(|last| step(last, &label, place))
+                    && !(problem.code == "years-gap" && span.is_some())
+                {
                     context.report(problem);
                 }
                 labels.push(Some(label));
@@ -73,7 +75,11 @@ pub(super) fn axis(context: &mut Context, named: &Named) -> Option<Axis> {
     // A faulty year ends the run, but not before the flows beside it are checked too.
     let any = labels.iter().flatten().next()?.clone();
     let labels = labels.into_iter().map(|label| label.unwrap_or_else(|| any.clone())).collect();
-    Some(Axis { at: named.area.clone(), direction, labels })
+    let mut axis = Axis { at: named.area.clone(), direction, labels, spans: None };
+    if let Some(span) = span {
+        axis.spans = Some(spans::spans(context, span, &axis)?);
+    }
+    Some(axis)
 }
 
 /// Whether a cell is one of a table's headings.
@@ -184,7 +190,7 @@ fn step(last: &Label, next: &Label, place: Place) -> Option<Problem> {
             place,
             format!("{} follows {}: {years} left out", words(next), words(last)),
         )
-        .hint("nothing flows in a year left out; check that this is meant")
+        .hint("nothing flows in a year left out; where a column stands for several years, name the years per column hence_span")
     })
 }
 

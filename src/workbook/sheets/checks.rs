@@ -3,7 +3,7 @@
 use super::lines::{AGREES, DIFFERS, Line, Live, col};
 use super::nets::Nets;
 use super::rebuild::Rebuilt;
-use super::{AuditInput, TargetCell, discounting::side_words, offsets, settings};
+use super::{AuditInput, TargetCell, discounting::side_words, offsets, periods, settings};
 use crate::appraisal::{Held, Label, TargetRole};
 use crate::formulas::{absolute, nth, refer, refer_cell};
 use crate::layout::{LabelValue, Layout, label_value};
@@ -266,7 +266,8 @@ impl<'a> Maker<'a> {
         let mut line = Line::factor(place(&at.sheet, cell), Live { formula: source, value }, style);
         let rebuilt = self.rebuilt(c);
         let label_cell = absolute_cell(row, col::WHAT);
-        let offset = offsets::formula(&label_cell, label, choice, outcome.timing, self.home);
+        let offset = periods::formula(&label_cell, axis, choice, i, outcome.timing, self.home)
+            .unwrap_or_else(|| offsets::formula(&label_cell, label, choice, outcome.timing, self.home));
         line.offset = Some(Live::number(offset, rebuilt.offsets[i]));
         line.rebuilt = self.rebuilt_factor(c, None, i);
         let recorded = refer_cell(self.home, &factors.sheet, nth(factors.range, i));

@@ -13,6 +13,7 @@ mod nets;
 mod offsets;
 pub(crate) mod own;
 mod own_factors;
+mod periods;
 mod rebuild;
 mod second_route;
 mod sensitivity;

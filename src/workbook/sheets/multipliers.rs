@@ -4,8 +4,9 @@ use chrono::Datelike;
 
 use super::checks::{Maker, absolute_cell, label_live, place};
 use super::lines::{Line, Live, col};
+use super::periods;
 use super::rebuild::{base_year, constant};
-use crate::appraisal::{Base, Choice, Given, Label, Levels, Stream};
+use crate::appraisal::{Axis, Base, Choice, Given, Label, Levels, Stream};
 use crate::formulas::{nth, refer, refer_cell};
 
 impl Maker<'_> {
@@ -59,8 +60,12 @@ impl Maker<'_> {
         let cells = self.layout.multipliers(c, s).unwrap_or_else(|| axis.at.hull());
         let cell = nth(cells.range, i);
         let mut line = Line::factor(place(&cells.sheet, cell), Live { formula: source, value }, style);
-        let years = years_formula(&absolute_cell(row, col::WHAT), label, choice, self.home);
-        line.offset = Some(Live::number(years, price_years(label, choice)));
+        let label_cell = absolute_cell(row, col::WHAT);
+        let years = match periods::formula(&label_cell, axis, choice, i, periods::MIDDLES, self.home) {
+            Some(middles) => format!("{middles}-{}", constant(price_shift(choice))),
+            None => years_formula(&label_cell, label, choice, self.home),
+        };
+        line.offset = Some(Live::number(years, price_years(axis, i, choice)));
         let mut text =
             formula(stream, choice, i, self.price_base(c), &absolute_cell(row, col::OFFSET), self.home);
         if let Some(weight) = self.weight_formula(c, s) {
@@ -87,13 +92,13 @@ impl Maker<'_> {
     /// The place among the years of the price base.
     fn price_base(&self, c: usize) -> usize {
         let choice = &self.input.appraisal.choices[c];
-        let labels = &self.input.appraisal.axes[choice.axis].labels;
-        labels.iter().position(|label| price_years(label, choice) == 0.0).unwrap_or(0)
+        let axis = &self.input.appraisal.axes[choice.axis];
+        (0..axis.labels.len()).position(|i| price_years(axis, i, choice) == 0.0).unwrap_or(0)
     }
 
     fn rebuilt_multiplier(&self, c: usize, s: usize, i: usize) -> f64 {
         let choice = &self.input.appraisal.choices[c];
-        let n = price_years(&self.input.appraisal.axes[choice.axis].labels[i], choice);
+        let n = price_years(&self.input.appraisal.axes[choice.axis], i, choice);
         let deflator = match choice.prices.levels.as_ref().map(|given| &given.value) {
             None => 1.0,
             Some(Levels::Inflation(rate)) => 1.0 / (1.0 + rate).powf(n),
@@ -132,8 +137,18 @@ fn formula(stream: &Stream, choice: &Choice, i: usize, base: usize, n: &str, hom
     parts.join("*")
 }
 
+/// Years from the base year to the year of the price base.
+fn price_shift(choice: &Choice) -> f64 {
+    let base = base_year(&choice.base.value);
+    choice.prices.year().map_or(0.0, |year| f64::from(year - base.unwrap_or(0)))
+}
+
 /// Years from the price base to a label.
-fn price_years(label: &Label, choice: &Choice) -> f64 {
+fn price_years(axis: &Axis, i: usize, choice: &Choice) -> f64 {
+    if let Some(spans) = &axis.spans {
+        return periods::rebuilt(axis, spans, choice, periods::MIDDLES)[i] - price_shift(choice);
+    }
+    let label = &axis.labels[i];
     let base = base_year(&choice.base.value);
     let from = f64::from(choice.prices.year().or(base).unwrap_or(0));
     match label {

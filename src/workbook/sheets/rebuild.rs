@@ -3,6 +3,7 @@
 use hence_core::Where;
 
 use super::growth_route::{Persistent, Regimes};
+use super::periods;
 use super::second_route::{Form, Route, Rule};
 use crate::appraisal::{Base, Label};
 use crate::formulas::{absolute, literal};
@@ -47,16 +48,25 @@ impl Rebuilt {
         let block = &layout.blocks[k];
         let choice = &input.appraisal.choices[block.choice];
         let outcome = &input.outcomes[block.choice];
-        let labels = &input.appraisal.axes[choice.axis].labels;
-        let offsets: Vec<f64> =
-            labels.iter().map(|l| super::offsets::rebuilt(l, &choice.base.value, outcome.timing)).collect();
+        let axis = &input.appraisal.axes[choice.axis];
+        let labels = &axis.labels;
+        let offsets: Vec<f64> = match &axis.spans {
+            Some(spans) => periods::rebuilt(axis, spans, choice, outcome.timing),
+            None => labels
+                .iter()
+                .map(|l| super::offsets::rebuilt(l, &choice.base.value, outcome.timing))
+                .collect(),
+        };
         let averaged = outcome.timing.flows == hence_core::Position::Averaged
             && !labels.iter().any(|l| matches!(l, Label::Offset(_) | Label::Date(_)));
         let fold = |f: fn(f64, f64) -> f64, start| offsets.iter().copied().fold(start, f);
         // An averaged flow needs the factor a year earlier, too.
         let lowest = (fold(f64::min, f64::INFINITY) - if averaged { 1.0 } else { 0.0 }).min(0.0);
         // The length of the appraisal, from these offsets alone; as many service years begin in it.
-        let length = fold(f64::max, 0.0);
+        let length = match &axis.spans {
+            Some(spans) => periods::length(&offsets, spans, outcome.timing),
+            None => fold(f64::max, 0.0),
+        };
         let service_years = (length - 1e-9).ceil().max(0.0) as u32;
         let reach = length.max(1.0).max(f64::from(service_years));
         let at = Where { base_year: base_year(&choice.base.value), length: Some(length) };

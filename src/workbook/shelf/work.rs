@@ -14,7 +14,7 @@ use crate::package::{Package, may_replace, same_file};
 use crate::problem::{Place, Problem, Result, WorkbookError};
 
 /// The extensions of the workbooks that are read, as a walk through folders finds them.
-pub const EXTENSIONS: [&str; 5] = ["xlsx", "xlsm", "xls", "xlsb", "ods"];
+pub const EXTENSIONS: [&str; 7] = ["xlsx", "xlsm", "xltx", "xltm", "xls", "xlsb", "ods"];
 
 /// What is to be done, besides where from and where to.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]

@@ -407,9 +407,6 @@ fn containers() -> Vec<Case> {
         case("binary workbook", Refused("other-format", NONE), move || {
             typed("application/vnd.ms-excel.sheet.binary.macroEnabled.main")
         }),
-        case("template", Refused("template", NONE), move || {
-            typed("application/vnd.openxmlformats-officedocument.spreadsheetml.template.main+xml")
-        }),
         case("two main parts", Refused("not-a-workbook", NONE), || {
             let links =
                 [("a", "officeDocument", "xl/workbook.xml", ""), ("b", "officeDocument", "xl/b.xml", "")];

@@ -114,6 +114,8 @@ fn sheet_cells(xml: &str, strings: &[String], mut keep: impl FnMut(Cell, FileCel
                     (Some(v), "s") => Stored::Text(strings[v.parse::<usize>().expect("an index")].clone()),
                     (Some(v), "str" | "inlineStr") => Stored::Text(v),
                     (Some(v), "e") => Stored::Error(v),
+                    // openpyxl writes an empty element for what it did not compute.
+                    (Some(v), _) if v.is_empty() => Stored::Nothing,
                     (Some(v), _) => Stored::Number(v.parse().expect("a number")),
                 };
                 if let Some(cell) = at.take() {
