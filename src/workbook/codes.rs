@@ -73,7 +73,7 @@ pub const CODES: &[Code] = codes! {
         "backslash-name": "Part names in the file hold backslashes, which programs read in different ways.",
         "bad-utf8": "A part of the file is not valid UTF-8 text.",
         "bad-xml": "A part of the file is not the XML that the format asks for.",
-        "broke-off": "hence broke off while it worked on the workbook: a fault of hence, please report it.",
+        "broke-off": "The work on the workbook broke off: a fault of hence, please report it.",
         "cannot-read": "The file cannot be opened or read.",
         "cannot-write": "The output cannot be written there.",
         "damaged-file": "A file of another format (.xls, .xlsb, .ods) cannot be read.",

@@ -8,6 +8,7 @@ use std::path::{Path, PathBuf};
 use hence_core::{Basis, Catalogue, ScheduleStatus};
 use hence_workbook::codes::{CODES, Group};
 use hence_workbook::fill::{FillRequest, fill};
+use hence_workbook::findings::Kind;
 use hence_workbook::model::Workbook;
 use hence_workbook::package::Package;
 use hence_workbook::roles::{ROLES, RoleInfo, Takes, Way, parse_name};
@@ -82,9 +83,16 @@ fn codes() -> String {
     Group::ALL.map(group).concat()
 }
 
+fn findings() -> String {
+    let rows: String =
+        Kind::ALL.iter().map(|kind| format!("| `{}` | {} |\n", kind.code(), cell(kind.words()))).collect();
+    format!("| finding | what it is |\n| --- | --- |\n{rows}")
+}
+
 #[test]
 fn the_tables_are_those_of_the_source() {
-    let sections = [("roles", roles()), ("schedules", schedules()), ("codes", codes())];
+    let sections =
+        [("roles", roles()), ("findings", findings()), ("schedules", schedules()), ("codes", codes())];
     sections::compare(&root().join("README.md"), &sections);
 }
 
