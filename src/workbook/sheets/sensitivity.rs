@@ -235,7 +235,9 @@ impl Page<'_> {
         // What rounding may make of a difference from the highest, as at the fill.
         let level = level(worths);
         let highest = level.first().map_or(0.0, |&i| worths[i].dust);
-        let dust: Vec<String> = worths.iter().map(|worth| literal(worth.dust.max(highest))).collect();
+        // Two digits are enough for a tolerance, and the same on every machine, whose last digits may differ.
+        let short = |x: f64| format!("{x:.1e}").parse().unwrap_or(x);
+        let dust: Vec<String> = worths.iter().map(|worth| literal(short(worth.dust.max(highest)))).collect();
         let text = format!(
             "IF(SUMPRODUCT(({row}+{{{}}}>=MAX({row}))*1)>1,\"several\",INDEX({names},1,MATCH(MAX({row}),{row},0)))",
             dust.join(",")

@@ -23,6 +23,19 @@ fn at_work(folder: &Path) -> Vec<String> {
     texts.filter(|text| text.contains(folder.to_str().unwrap()) && theirs(text)).collect()
 }
 
+/// Ctrl-C's signal; the other one where whoever started this test ignores it, as shells do for what runs in the background:
+/// a program that is started so ignores it, too.
+fn interrupt() -> i32 {
+    let status = std::fs::read_to_string("/proc/self/status").expect("this process");
+    let mask = status.lines().find_map(|line| line.strip_prefix("SigIgn:")).expect("the ignored signals");
+    let mask = u64::from_str_radix(mask.trim(), 16).expect("a mask");
+    if mask & (1 << (INT - 1)) != 0 {
+        eprintln!("SIGINT is ignored here: SIGTERM is sent in its place");
+        return TERM;
+    }
+    INT
+}
+
 /// Waits until no process is left over; the system takes a moment to end those of a killed parent.
 fn none_is_left(folder: &Path) {
     let since = Instant::now();
@@ -62,16 +75,21 @@ fn killed_runs_are_resumed_to_what_an_unbroken_run_makes() {
     };
     let began = Instant::now();
     assert_eq!(code(&run("whole", &[]).output().unwrap()), 0);
-    let takes = began.elapsed();
+    let mut takes = began.elapsed();
     let whole = shelf.files("whole");
     assert_eq!(whole.len(), names.len());
 
     let (mut state, mut broken) = (26, 0);
-    for round in 0..kills {
-        let by = [KILL, TERM, KILL, INT][round % 4];
+    // Where a run ends before it is killed, the machine was quicker than before: the next is killed earlier.
+    for round in 0..10 * kills {
+        if broken == kills {
+            break;
+        }
+        let by = [KILL, TERM, KILL, interrupt()][round % 4];
         let before = shelf.names("out");
         // Several kills in a row break the same run, before it is brought to its end.
         let mut child = run("out", &["--resume"]).spawn().expect("the program starts");
+        let began = Instant::now();
         std::thread::sleep(takes.mul_f64(next(&mut state)));
         let running = child.try_wait().unwrap().is_none();
         if running {
@@ -79,6 +97,9 @@ fn killed_runs_are_resumed_to_what_an_unbroken_run_makes() {
         }
         let output = child.wait_with_output().unwrap();
         let killed = output.status.signal() == Some(by);
+        if !killed {
+            takes = takes.min(began.elapsed());
+        }
         assert!(killed || output.status.success(), "{}: {}", output.status, stderr(&output));
         broken += usize::from(killed);
         none_is_left(&shelf.path("shelf"));
@@ -96,12 +117,12 @@ fn killed_runs_are_resumed_to_what_an_unbroken_run_makes() {
             std::fs::remove_dir_all(shelf.path("out")).unwrap();
         }
     }
-    assert!(broken * 2 >= kills, "only {broken} of {kills} runs were broken");
+    assert_eq!(broken, kills, "too few runs were broken");
 }
 
 #[test]
 fn a_stopped_run_ends_at_once_and_says_how_to_go_on() {
-    for by in [TERM, INT] {
+    for by in [TERM, interrupt()] {
         let shelf = Shelf::of(&["a.xlsx", "hangs.xlsx", "z.xlsx"]);
         let mut command = shelf.command("out", &["--jobs", "2", "--ledger", "ledger.jsonl"]);
         let child = command.stdout(Stdio::piped()).stderr(Stdio::piped()).spawn().unwrap();

@@ -186,7 +186,7 @@ fn flat(dice: &mut Dice) -> (String, Rule) {
     if dice.chance(0.2) {
         return ("preference 0.5%, hazard 1%, elasticity 1, growth 2%".to_owned(), Rule::flat(0.035));
     }
-    let rate = typed(dice.between(0.01, 0.08), dice.one_of(&[2, 3, 3, 4]) as i32);
+    let rate = typed(dice.between(0.01, 0.08), dice.one_of(&[2, 3, 3, 4]));
     (format!("{}%", percent(rate)), Rule::flat(rate))
 }
 
@@ -435,7 +435,7 @@ impl<'a> Sheet<'a> {
         self.put(OFFSETS, 0, "'Years from base".into());
         self.put(FACTOR, 0, "'Discount factor".into());
         let factors = page.factors(book.base);
-        for i in 0..page.years.len() {
+        for (i, factor) in factors.iter().enumerate() {
             let col = FIRST + i as u32;
             let quote = if page.year_as_text == Some(i) { "'" } else { "" };
             self.put(YEARS, col, format!("{quote}{}", page.labels[i]));
@@ -450,9 +450,9 @@ impl<'a> Sheet<'a> {
             let text = match page.rule.formula(&t).filter(|_| !page.pasted && !typed_over) {
                 Some(formula) => {
                     let formula = page.places.map_or(formula.clone(), |p| format!("ROUND({formula},{p})"));
-                    format!("={formula}>{}", factors[i])
+                    format!("={formula}>{}", factor)
                 }
-                None => factors[i].to_string(),
+                None => factor.to_string(),
             };
             self.put(FACTOR, col, text);
         }
