@@ -13,6 +13,9 @@ use crate::problem::Place;
 /// A total has to miss what the basis gives by so many times its tolerance before a reading of it says anything.
 const CLEAR: f64 = 20.0;
 
+/// The most readings that a number may fit by chance, for one that it fits to tell anything.
+const CHANCE: f64 = 0.05;
+
 /// What a total may hold instead of what it should.
 struct Reading {
     kind: Kind,
@@ -112,6 +115,9 @@ fn read(look: &Look, compared: &Compared, target: &Target, held: f64) -> Option<
         let tells = |x: f64| x.abs() > CLEAR * tolerance;
         let fits = |reading: &&Reading| tells(reading.value) && (reading.value - held).abs() <= tolerance;
         let Some(reading) = readings.iter().find(fits) else { continue };
+        if by_chance(&readings, totals.whole, tolerance) > CHANCE {
+            continue;
+        }
         let mut added = vec![0.0; look.seen.appraisal.choices.len()];
         added[c] = reading.added;
         let effect = look.in_results(&added);
@@ -132,6 +138,13 @@ fn read(look: &Look, compared: &Compared, target: &Target, held: f64) -> Option<
         });
     }
     None
+}
+
+/// How many of the readings a number would fit that stood anywhere among them: many readings lie close together, and a number
+/// with few decimals fits one of them by chance.
+fn by_chance(readings: &[Reading], whole: f64, tolerance: f64) -> f64 {
+    let reach = readings.iter().map(|reading| (reading.value - whole).abs()).fold(0.0, f64::max);
+    if reach > 0.0 { readings.len() as f64 * tolerance / reach } else { f64::INFINITY }
 }
 
 /// Half of the last digit of a number that was typed with few decimals.

@@ -2,7 +2,7 @@
 
 use super::lines::line_of;
 use super::structure::{Look, figure};
-use crate::appraisal::{Choice, Stream};
+use crate::appraisal::{Choice, Stream, StreamKind};
 use crate::findings::{Finding, Kind};
 use crate::problem::Place;
 use crate::references::Range;
@@ -215,6 +215,11 @@ fn within(look: &Look, c: usize, s: usize) -> Option<Finding> {
     let beside = if from > 0 { from - 1 } else { to };
     let inside = if from > 0 { from } else { to - 1 };
     let scale = near_scale(stream.raw[filled[inside]] / stream.raw[filled[beside]], CLOSE)?;
+    // Capital comes before running costs, and clearing away after them.
+    let at_an_end = from == 0 || to == filled.len();
+    if at_an_end && scale > 1.0 && stream.kind == StreamKind::Cost {
+        return None;
+    }
     let mut added = vec![0.0; look.seen.appraisal.choices.len()];
     added[c] =
         filled[from..to].iter().map(|i| stream.raw[*i] * (1.0 - 1.0 / scale) * look.worth(c, s, *i)).sum();

@@ -3,6 +3,7 @@
 use std::path::{Path, PathBuf};
 
 use hence_core::Catalogue;
+use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::diagnose::Seen;
 use hence_workbook::diagnose::structure::findings;
 use hence_workbook::fill::{FillRequest, fill};
@@ -13,6 +14,7 @@ use hence_workbook::resolve::Options;
 
 use crate::corpus::prepared;
 use crate::numbers::random;
+use crate::small::Small;
 
 /// What a package is said to hold that is wrong.
 fn said(package: &Package, roles: &[(String, String)]) -> Vec<String> {
@@ -77,4 +79,29 @@ fn real_workbooks() {
     }
     assert!(tried > 60, "{tried} workbooks were tried");
     assert!(wrong.is_empty(), "{wrong:#?}");
+}
+
+#[test]
+fn capital_before_running_costs_and_clearing_away_after_them_are_no_units() {
+    // 900 at first, then 1 a year, and 900 again at the end: numbers of one unit.
+    let years: Vec<String> = (0..30).map(|i| (2026 + i).to_string()).collect();
+    let row = |at: &dyn Fn(usize) -> f64| (0..30).map(|i| at(i).to_string()).collect::<Vec<_>>().join(" | ");
+    let costs: [&dyn Fn(usize) -> f64; 2] =
+        [&|i| if i == 0 { 900.0 } else { 1.0 }, &|i| if i == 29 { 900.0 } else { 1.0 }];
+    for cost in costs {
+        let npv: f64 = (0..30).map(|i| (40.0 - cost(i)) * 1.035_f64.powi(-(i as i32))).sum();
+        let cells = format!(
+            "B1: 2026\nB2: '3.5%\nB4: {}\nB5: {}\nB6: {}\nB8: {npv}",
+            years.join(" | "),
+            row(cost),
+            row(&|_| 40.0)
+        );
+        let small = Small::default().sheet("Plan", &cells).names(
+            "hence_base B1, hence_basis B2, hence_years B4:AE4, hence_cost_works B5:AE5, hence_benefit_water B6:AE6, \
+             hence_npv B8",
+        );
+        let report =
+            check(&small.open().0, &CheckRequest::default(), &Catalogue::builtin()).expect("checked");
+        assert!(report.findings.is_empty(), "{:?}", report.findings);
+    }
 }
