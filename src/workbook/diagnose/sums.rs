@@ -14,7 +14,9 @@ use crate::problem::Place;
 const CLEAR: f64 = 20.0;
 
 /// The most readings that a number may fit by chance, for one that it fits to tell anything.
-const CHANCE: f64 = 0.05;
+const CHANCE: f64 = 0.02;
+/// How many tolerances away a reading is near.
+const NEAR: f64 = 100.0;
 
 /// What a total may hold instead of what it should.
 struct Reading {
@@ -115,7 +117,7 @@ fn read(look: &Look, compared: &Compared, target: &Target, held: f64) -> Option<
         let tells = |x: f64| x.abs() > CLEAR * tolerance;
         let fits = |reading: &&Reading| tells(reading.value) && (reading.value - held).abs() <= tolerance;
         let Some(reading) = readings.iter().find(fits) else { continue };
-        if by_chance(&readings, totals.whole, tolerance) > CHANCE {
+        if by_chance(&readings, held, tolerance) > CHANCE {
             continue;
         }
         let mut added = vec![0.0; look.seen.appraisal.choices.len()];
@@ -140,11 +142,11 @@ fn read(look: &Look, compared: &Compared, target: &Target, held: f64) -> Option<
     None
 }
 
-/// How many of the readings a number would fit that stood anywhere among them: many readings lie close together, and a number
-/// with few decimals fits one of them by chance.
-fn by_chance(readings: &[Reading], whole: f64, tolerance: f64) -> f64 {
-    let reach = readings.iter().map(|reading| (reading.value - whole).abs()).fold(0.0, f64::max);
-    if reach > 0.0 { readings.len() as f64 * tolerance / reach } else { f64::INFINITY }
+/// How many readings a number would fit that stood anywhere near it: where many lie close together, and a number has few
+/// decimals, it fits one of them by chance.
+fn by_chance(readings: &[Reading], held: f64, tolerance: f64) -> f64 {
+    let near = readings.iter().filter(|reading| (reading.value - held).abs() <= NEAR * tolerance).count();
+    near.saturating_sub(1) as f64 / NEAR
 }
 
 /// Half of the last digit of a number that was typed with few decimals.
