@@ -321,8 +321,9 @@ fn parameters_out_of_range_are_refused() {
         let error = refused(&regimes(&states, &transition, &start));
         assert_eq!((error.kind(), error.argument(), error.index()), (kind, argument, index), "{error}");
     }
-    // A tail without end needs a last rate; one that ends does not.
-    let curve = made(&persistent(0.02, 0.01, 0.5, 0.0));
+    // A tail without end needs a last rate, which states that take turns for ever do not have; one that ends does not.
+    let turns: [&[f64]; 2] = [&[0.0, 1.0], &[1.0, 0.0]];
+    let curve = made(&regimes(&[good, (0.01, 0.02)], &turns, &[1.0, 0.0]));
     let tail = |text: &str| Tail::parse(text).unwrap().present_value(&curve, 10.0, 100.0, Some(2026));
     assert_eq!(tail("for ever").unwrap_err().kind(), ErrorKind::Unsupported);
     assert_eq!(tail("to 11").unwrap(), 100.0 * curve.factor(11.0).unwrap());
