@@ -133,6 +133,9 @@ pub struct Prices {
     pub declared: Option<Given<Declared>>,
     /// From `prices`: where it is given, flows are entered in money of the day and made real by it.
     pub levels: Option<Given<Levels>>,
+    /// The year from which prices of streams grow against others: the workbook's own price base, else its own base. A
+    /// base or a price year from the command line moves what values are expressed in, not what a price will be.
+    pub growth_from: Option<i32>,
 }
 
 /// What `price_basis` says.

@@ -1,6 +1,6 @@
 //! The years of the flows, and the base they are counted from.
 
-use chrono::{Days, NaiveDate};
+use chrono::{Datelike, Days, NaiveDate};
 use hence_core::parse_financial_year;
 
 use crate::appraisal::{Axis, Base, COMMAND_LINE, Direction, Given, Label};
@@ -232,6 +232,24 @@ pub(super) fn base(
         return Some(Given { at: named.and_then(Named::cells), from: COMMAND_LINE.to_owned(), ..given });
     }
     read_base(context, named, axis)
+}
+
+/// The calendar year of the base that the workbook states, whatever the command line says; nothing where it states
+/// none, or where years are counted from the base, whichever it is.
+pub(super) fn own_base_year(context: &mut Context, named: Option<&Named>, axis: &Axis) -> Option<i32> {
+    let named = named?;
+    if matches!(axis.labels.first(), Some(Label::Number(_) | Label::Offset(_))) {
+        return None;
+    }
+    let content = match &named.stated {
+        Some(value) => ReadCell { value: value.clone(), ..ReadCell::default() },
+        None => context.grid(&named.at)?.get(named.at.range.first).cloned()?,
+    };
+    match label(&content, context.book.date1904, named.place()).ok()? {
+        Label::Year(year) | Label::Financial(year, _) => Some(year),
+        Label::Date(date) => Some(date.year()),
+        Label::Number(_) | Label::Offset(_) => None,
+    }
 }
 
 fn read_base(context: &mut Context, named: Option<&Named>, axis: &Axis) -> Option<Given<Base>> {
