@@ -55,8 +55,9 @@ pub(super) fn axis(context: &mut Context, named: &Named, span: Option<&Named>) -
         match read {
             Ok(label) => {
                 let last = labels.last().and_then(Option::as_ref);
+                // Where columns are not a year each, labels are judged by the years per column.
                 if let Some(problem) = last.and_then(|last| step(last, &label, place))
-                    && !(problem.code == "years-gap" && span.is_some())
+                    && !(matches!(problem.code, "years-gap" | "years-repeat") && span.is_some())
                 {
                     context.report(problem);
                 }

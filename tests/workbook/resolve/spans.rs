@@ -1,6 +1,7 @@
 //! Years per column: how they are read, which labels go with them, and what cannot follow them.
 
 use hence_core::Catalogue;
+use hence_workbook::references::Cell;
 use hence_workbook::resolve::Options;
 use hence_workbook::valuation::value;
 
@@ -30,12 +31,53 @@ fn labels_are_the_years_in_which_periods_begin_or_after_years_in_which_they_end(
     let end = book("1 | 1 | 5 | 5 | 10", "2026 | 2027 | 2032 | 2037 | 2047", "", "");
     assert_eq!(offsets(&end), offsets(&begin));
     assert_eq!(codes(&begin.resolved().problems), [""; 0], "no year is said to be left out");
-    // Half-years, each with the year it begins in, would repeat; numbers do not.
+    // Half-years by their number.
     let halves = book("0.5 | 0.5 | 0.5 | 0.5 | 1", "1 | 2 | 3 | 4 | 5", "", "");
     assert_eq!(offsets(&halves), [50.0, 100.0, 150.0, 200.0, 300.0]);
     // Year numbers that count years, not columns.
     let numbers = book("1 | 1 | 1 | 5 | 5", "0 | 1 | 2 | 3 | 8", "", "");
     assert_eq!(offsets(&numbers), [0.0, 100.0, 200.0, 700.0, 1200.0]);
+}
+
+/// Offsets of parts of a year are those of the sums of the years per column before them.
+#[test]
+fn parts_of_a_year_bear_the_label_of_the_year_in_which_they_begin() {
+    let along = |spans: &[f64], labels: &[String]| {
+        let row = |first: &str, cells: Vec<String>| format!("{first}: {}\n", cells.join(" | "));
+        let cells = "B1: 2026\nB2: '4%\n".to_owned()
+            + &row("B3", spans.iter().map(f64::to_string).collect())
+            + &row("B4", labels.to_vec())
+            + &row("B5", vec!["1".to_owned(); spans.len()]);
+        let to = |row| Cell::new(row, spans.len() as u32).to_string();
+        let names = format!(
+            "hence_base B1, hence_basis B2, hence_span B3:{}, hence_years B4:{}, hence_cost_works B5:{}, hence_npv B9",
+            to(2),
+            to(3),
+            to(4)
+        );
+        Small::default().sheet("Plan", &cells).names(&names)
+    };
+    let years = |from: i32, parts: usize, more: &[i32]| -> Vec<String> {
+        let parts = std::iter::repeat_n(from, parts).chain(std::iter::repeat_n(from + 1, parts));
+        parts.chain(more.iter().copied()).map(|year| year.to_string()).collect()
+    };
+    // Quarters of 2027 end 0.25, 0.5, ... years after 2026 does.
+    let quarters = along(&[0.25; 8], &years(2027, 4, &[]));
+    assert_eq!(offsets(&quarters), [25.0, 50.0, 75.0, 100.0, 125.0, 150.0, 175.0, 200.0]);
+    let months = offsets(&along(&[1.0 / 12.0; 24], &years(2027, 12, &[])));
+    assert_eq!((months[0], months[11], months[23]), (8.0, 100.0, 200.0));
+    let mut mixed = vec![0.25; 8];
+    mixed.extend([1.0, 5.0, 10.0]);
+    let mixed = along(&mixed, &years(2027, 4, &[2029, 2030, 2035]));
+    assert_eq!(offsets(&mixed)[7..], [200.0, 300.0, 800.0, 1800.0]);
+    // A year that stands more often than it has parts is still refused.
+    let twice = along(&[0.5; 4], &years(2027, 1, &[2028, 2028]));
+    assert_eq!(twice.problems(), ["span-years Plan!C4 [hence_span]"]);
+    // Financial years.
+    let financial = Small::default()
+        .sheet("Plan", "B1: '2026/27\nB2: '4%\nB3: 0.5\nB4: '2027/28 | '2027/28 | '2028/29 | '2028/29\nB5: 1 | 1 | 1 | 1\nB9: ")
+        .names("hence_base B1, hence_basis B2, hence_span B3, hence_years B4:E4, hence_cost_works B5:E5, hence_npv B9");
+    assert_eq!(offsets(&financial), [50.0, 100.0, 150.0, 200.0]);
 }
 
 #[test]
