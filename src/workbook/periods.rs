@@ -25,7 +25,8 @@
 //! service years of annual equivalents, reaches to the last year of a period.
 //!
 //! **Refused**: averaged flows, whose mean is over a year; dates and offsets, which say themselves where a flow stands; a
-//! tail after a last period that is not one year; the role `rates` with periods over a year; consumption.
+//! tail after a last period that is not one year; a residual value after a block of years, unless flows stand at ends, as
+//! it is left at the end of the block; the role `rates` with periods over a year; consumption.
 //!
 //! **Source**: common practice (compounding over parts of a year at the yearly rate); the moments are those of
 //! [`hence_core::Timing`], with a period's length in place of a year's.

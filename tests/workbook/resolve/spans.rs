@@ -184,6 +184,28 @@ fn what_cannot_follow_is_refused_by_name() {
     assert_eq!(codes(error.problems()), ["span-role Plan!B3:F3 [hence_span]"]);
 }
 
+/// Left over at the end of 2034, the last of five years: 8 years after the end of 2026.
+#[test]
+fn what_is_left_over_is_left_at_the_end_of_the_last_column() {
+    let left = |timing: &str, spans: &str, labels: &str| {
+        let more = format!("A10: 'Residual | 100\nA11: 'Timing | '{timing}");
+        let small = book(spans, labels, &more, "hence_residual_works B10, hence_timing B11");
+        let found = value(&small.resolved(), &Catalogue::builtin());
+        found.map(|(outcomes, _)| outcomes[0].absolute.pv_costs).map_err(|error| codes(error.problems()))
+    };
+    let (block, years) = ("1 | 1 | 1 | 1 | 5", "2026 | 2027 | 2028 | 2029 | 2030");
+    let flows: f64 = (0..4).map(|n| f64::from(n + 1) / 1.035f64.powi(n)).sum();
+    let pv = left("flows end", block, years).expect("at the end");
+    assert!((pv - (flows + (5.0 - 100.0) / 1.035f64.powi(8))).abs() < 1e-9, "{pv}");
+    for timing in ["flows middle", "flows start"] {
+        assert_eq!(
+            left(timing, block, years),
+            Err(vec!["span-role Plan!B10 [hence_residual_works]".to_owned()])
+        );
+        assert!(left(timing, "5 | 1 | 1 | 1 | 1", "2026 | 2031 | 2032 | 2033 | 2034").is_ok());
+    }
+}
+
 #[test]
 fn options_may_have_periods_of_their_own() {
     let option = "A3: 'Span | 1 | 5\nA4: 'Year | 2026 | 2027\nA5: 'Works | 1 | 2\nA9: 'NPV";
