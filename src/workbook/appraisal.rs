@@ -44,6 +44,14 @@ pub struct Axis {
     pub spans: Option<Spans>,
 }
 
+impl Axis {
+    /// Whether the labels number the columns one by one; else they say years, those of numbers counted from the base.
+    pub fn numbers_columns(&self) -> bool {
+        let Some(Label::Number(first)) = self.labels.first() else { return false };
+        (*first..).zip(&self.labels).all(|(n, label)| *label == Label::Number(n))
+    }
+}
+
 /// Years per column, from the role `span`.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Spans {

@@ -204,7 +204,7 @@ fn position(position: Position) -> f64 {
 
 /// The periods of an axis, `years` being the years from the base to its labels; none where columns are a year each.
 fn periods_of(axis: &Axis, years: &[f64]) -> Option<Periods> {
-    Some(Periods::new(axis.spans.as_ref()?, axis.labels.first()?, *years.first()?))
+    Some(Periods::new(axis.spans.as_ref()?, axis.numbers_columns(), *years.first()?))
 }
 
 /// Years from the middle of the base period to the middle of each period; none where columns are a year each.
@@ -230,7 +230,7 @@ fn span_words(spans: &Spans) -> String {
 /// "a flow in 2026 has factor 1.0000, in 2027 0.9662".
 pub(crate) fn sentence(axis: &Axis, clock: &Clock, factors: &[f64]) -> String {
     let words = |label: &Label| match label {
-        Label::Number(n) if clock.spanned => format!("period {n}"),
+        Label::Number(n) if clock.spanned && axis.numbers_columns() => format!("period {n}"),
         label => label_words(label),
     };
     let mut text = format!("a flow in {} has factor {:.4}", words(&axis.labels[0]), factors[0]);

@@ -1,8 +1,10 @@
 //! Years per column: how they are read, which labels go with them, and what cannot follow them.
 
 use hence_core::Catalogue;
+use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::references::Cell;
 use hence_workbook::resolve::Options;
+use hence_workbook::sheets::VERDICT_AGREES;
 use hence_workbook::valuation::value;
 
 use crate::small::{Small, codes, lines};
@@ -90,6 +92,29 @@ fn blocks_first_are_taken_to_be_labelled_by_where_they_begin() {
         "{:?}",
         lines(&notes)
     );
+}
+
+/// Year n is n years after the base year, whether it is written as a number or as a calendar year.
+#[test]
+fn blocks_stand_where_they_do_whichever_way_their_years_are_written() {
+    let timed = |labels: &str, timing: &str| {
+        let more = format!("A11: 'Timing | '{timing}");
+        offsets(&book("5 | 5 | 5 | 5 | 5", labels, &more, "hence_timing B11"))
+    };
+    for (numbers, years, timing, first) in [
+        ("1 | 6 | 11 | 16 | 21", "2027 | 2032 | 2037 | 2042 | 2047", "flows middle, base start", 350.0),
+        ("0 | 5 | 10 | 15 | 20", "2026 | 2031 | 2036 | 2041 | 2046", "flows end, base end", 400.0),
+    ] {
+        let expected: Vec<f64> = (0..5).map(|i| first + 500.0 * f64::from(i)).collect();
+        assert_eq!(timed(numbers, timing), expected, "{numbers}");
+        assert_eq!(timed(years, timing), expected, "{years}");
+    }
+    // Numbers one by one count columns: period 0 is the base.
+    assert_eq!(timed("0 | 1 | 2 | 3 | 4", "flows end, base end")[..2], [0.0, 500.0]);
+    let filled = book("5 | 5 | 5 | 5 | 5", "1 | 6 | 11 | 16 | 21", "", "").open().0;
+    let filled =
+        fill(&filled, &FillRequest::default(), &Catalogue::builtin()).unwrap_or_else(|e| panic!("{e}"));
+    assert_eq!(filled.report.verdict, VERDICT_AGREES);
 }
 
 #[test]
