@@ -117,6 +117,23 @@ fn blocks_stand_where_they_do_whichever_way_their_years_are_written() {
     assert_eq!(filled.report.verdict, VERDICT_AGREES);
 }
 
+/// Factors at 4% a year, by hand: 1.04^-6 = 0.7903, 1.04^-16 = 0.5339.
+#[test]
+fn the_timing_sentence_has_a_factor_for_each_length_of_column() {
+    let sentence = |spans: &str, labels: &str| {
+        let small = book(spans, labels, "B2: '4%", "");
+        let (outcomes, _) = value(&small.resolved(), &Catalogue::builtin()).unwrap_or_else(|e| panic!("{e}"));
+        outcomes[0].timing_sentence.clone()
+    };
+    let blocks = ", the 5 years from 2028 have factor 0.7903, the 10 years from 2033 have factor 0.5339";
+    let begin = sentence("1 | 1 | 5 | 10 | 10", "2026 | 2027 | 2028 | 2033 | 2043");
+    assert!(begin.ends_with(&format!("a flow in 2026 has factor 1.0000, in 2027 0.9615{blocks}")), "{begin}");
+    let end = sentence("1 | 1 | 5 | 10 | 10", "2026 | 2027 | 2032 | 2042 | 2052");
+    assert!(end.ends_with(blocks), "{end}");
+    let numbered = sentence("1 | 1 | 1 | 5 | 5", "0 | 1 | 2 | 3 | 8");
+    assert!(numbered.ends_with(", in year 3 (5 years) 0.7599"), "{numbered}");
+}
+
 #[test]
 fn one_cell_stands_for_all_columns() {
     let months = Small::default()
