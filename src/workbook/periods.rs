@@ -23,7 +23,8 @@
 //! period, and the price base those at the middle of the base period: growth and inflation run over n_i = S_i + (s_i - u)/2
 //! years, which again is the difference of years where periods are years. A flow of several years stands at one moment,
 //! so eras and payback count it there; payback is linear between the moments. The length of the appraisal, and with it the
-//! service years of annual equivalents, reaches to the last year of a period.
+//! service years of annual equivalents, reaches to the last year of a period; where columns are parts of a year, service
+//! years are the whole years nearest to it, at least one.
 //!
 //! **Refused**: averaged flows, whose mean is over a year; dates and offsets, which say themselves where a flow stands; a
 //! tail after a last period that is not one year; a residual value after a block of years, unless flows stand at ends, as

@@ -185,8 +185,7 @@ fn value_choice(
         streams.push(outcome);
         further.push(later);
     }
-    // Rounding in an offset must not add a year.
-    let service_years = (clock.length() - 1e-9).ceil().max(0.0) as u32;
+    let service_years = service_years(axis, clock.length());
     let annuity = match service_years {
         0 => 0.0,
         n => annual_equivalent(&curve, 0.0, n).map_err(|error| from_core(&error, basis_place()))?.1,
@@ -227,6 +226,15 @@ fn value_choice(
     measure_gross(&mut outcome, &further, &clock);
     measure_units(&mut outcome, choice, None);
     Ok((outcome, moments))
+}
+
+/// Service years of the annual equivalent: years begun, or the whole years nearest where columns are parts of a year, so
+/// that one part alone does not add a year.
+fn service_years(axis: &Axis, length: f64) -> u32 {
+    let parts = axis.spans.as_ref().is_some_and(|spans| spans.lengths.iter().any(|s| *s < 1.0 - 1e-9));
+    // Rounding in an offset must not add a year; time that passes is a year at least.
+    let begun = (length - 1e-9).ceil().max(0.0);
+    if parts && begun > 0.0 { length.round().max(1.0) as u32 } else { begun as u32 }
 }
 
 /// The factor of every year.

@@ -134,6 +134,29 @@ fn the_timing_sentence_has_a_factor_for_each_length_of_column() {
     assert!(numbered.ends_with(", in year 3 (5 years) 0.7599"), "{numbered}");
 }
 
+/// Twelve months from the base on, at 4%: one service year, whose factor is 1/1.04.
+#[test]
+fn one_part_of_a_year_does_not_add_a_service_year() {
+    let row = |of: &dyn Fn(u32) -> u32| (1..=12).map(|n| of(n).to_string()).collect::<Vec<_>>().join(" | ");
+    let cells = format!(
+        "B2: '4%\nB3: =1/12>0.08333333333333333\nB4: {}\nB5: {}\nB6: 'flows middle, base start\nB9: \nB10: ",
+        row(&|n| n),
+        row(&|_| 5)
+    );
+    let months = Small::default().sheet("Plan", &cells).names(
+        "hence_basis B2, hence_span B3, hence_years B4:M4, hence_benefit_rent B5:M5, hence_timing B6, hence_npv B9, \
+         hence_annual B10",
+    );
+    let out = fill(&months.open().0, &FillRequest::default(), &Catalogue::builtin());
+    let out = out.unwrap_or_else(|e| panic!("{e}"));
+    assert_eq!(out.report.verdict, VERDICT_AGREES);
+    let option = &out.report.options[0];
+    assert_eq!(option.service_years, 1);
+    // A flow of month n stands at its middle, n/12 + 1/24 years after the start of month 0.
+    let npv: f64 = (1..=12).map(|n| 5.0 / 1.04f64.powf(f64::from(n) / 12.0 + 1.0 / 24.0)).sum();
+    assert!((option.absolute.annual.expect("a year") - npv * 1.04).abs() < 1e-9);
+}
+
 #[test]
 fn one_cell_stands_for_all_columns() {
     let months = Small::default()
