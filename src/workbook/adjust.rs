@@ -74,12 +74,19 @@ pub(crate) fn multipliers(
         }
     };
     if let Some(growth) = &stream.growth {
+        let lead = growth_lead(choice);
         for (multiplier, n) in all.iter_mut().zip(&years) {
-            *multiplier *= (1.0 + growth.value).powf(*n);
+            *multiplier *= (1.0 + growth.value).powf(n + lead);
         }
     }
     all.iter_mut().for_each(|multiplier| *multiplier *= weight.unwrap_or(1.0));
     Ok(Some(all))
+}
+
+/// Years from the year from which relative prices grow to the price base: 0 but where the command line moves that.
+fn growth_lead(choice: &Choice) -> f64 {
+    let base = choice.prices.year().or(base_year(&choice.base.value));
+    base.zip(choice.prices.growth_from).map_or(0.0, |(base, from)| f64::from(base - from))
 }
 
 /// The place of the price base among the years.
@@ -109,7 +116,11 @@ fn no_level(choice: &Choice) -> Problem {
 
 /// The year of the price base in words.
 pub(crate) fn words_of_year(choice: &Choice) -> String {
-    match choice.prices.year().or(base_year(&choice.base.value)) {
+    year_words(choice.prices.year().or(base_year(&choice.base.value)), choice)
+}
+
+fn year_words(year: Option<i32>, choice: &Choice) -> String {
+    match year {
         Some(year) => match choice.base.value {
             crate::appraisal::Base::Financial(_) => format!("{year}/{:02}", (year + 1).rem_euclid(100)),
             _ => year.to_string(),
@@ -238,8 +249,9 @@ pub(crate) fn multiplier_words(stream: &Stream, choice: &Choice, outcome: &Choic
     }
     if let Some(growth) = &stream.growth {
         parts.push(format!(
-            "relative price growth of {} a year: (1 + growth)^n, n years after {year}",
-            hence_core::percent(growth.value)
+            "relative price growth of {} a year: (1 + growth)^n, n years after {}",
+            hence_core::percent(growth.value),
+            year_words(choice.prices.growth_from.or(base_year(&choice.base.value)), choice)
         ));
     }
     if let (Some(income), Some(reference), Some(elasticity)) =

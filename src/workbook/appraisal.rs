@@ -44,6 +44,14 @@ pub struct Axis {
     pub spans: Option<Spans>,
 }
 
+impl Axis {
+    /// Whether the labels number the columns one by one; else they say years, those of numbers counted from the base.
+    pub fn numbers_columns(&self) -> bool {
+        let Some(Label::Number(first)) = self.labels.first() else { return false };
+        (*first..).zip(&self.labels).all(|(n, label)| *label == Label::Number(n))
+    }
+}
+
 /// Years per column, from the role `span`.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Spans {
@@ -133,6 +141,9 @@ pub struct Prices {
     pub declared: Option<Given<Declared>>,
     /// From `prices`: where it is given, flows are entered in money of the day and made real by it.
     pub levels: Option<Given<Levels>>,
+    /// The year from which prices of streams grow against others: the workbook's own price base, else its own base. A
+    /// base or a price year from the command line moves what values are expressed in, not what a price will be.
+    pub growth_from: Option<i32>,
 }
 
 /// What `price_basis` says.

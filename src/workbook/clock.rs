@@ -4,7 +4,7 @@ use chrono::{Datelike, NaiveDate};
 use hence_core::{Curve, DayCount, Position, Timing, offset_of_dates};
 
 use crate::appraisal::{Axis, Base, Label, Spans};
-use crate::periods::Periods;
+use crate::periods::{Periods, cumulated};
 use crate::problem::{Place, Problem, Result};
 use crate::valuation::{cell_of, from_core};
 
@@ -204,7 +204,7 @@ fn position(position: Position) -> f64 {
 
 /// The periods of an axis, `years` being the years from the base to its labels; none where columns are a year each.
 fn periods_of(axis: &Axis, years: &[f64]) -> Option<Periods> {
-    Some(Periods::new(axis.spans.as_ref()?, axis.labels.first()?, *years.first()?))
+    Some(Periods::new(axis.spans.as_ref()?, axis.numbers_columns(), *years.first()?))
 }
 
 /// Years from the middle of the base period to the middle of each period; none where columns are a year each.
@@ -218,8 +218,7 @@ pub(crate) fn years_between_middles(axis: &Axis, base: &Base) -> Result<Option<V
 /// How long the columns are: "periods of 0.083333 to 5 years".
 fn span_words(spans: &Spans) -> String {
     let of = |fold: fn(f64, f64) -> f64| spans.lengths.iter().copied().reduce(fold).unwrap_or(1.0);
-    let shown = |years: f64| (years * 1e6).round() / 1e6;
-    let (short, long) = (shown(of(f64::min)), shown(of(f64::max)));
+    let (short, long) = (rounded(of(f64::min)), rounded(of(f64::max)));
     if short == long {
         format!("periods of {short} years")
     } else {
@@ -227,10 +226,37 @@ fn span_words(spans: &Spans) -> String {
     }
 }
 
+/// A factor of each length that the first two columns do not have: ", the 5 years from 2028 have factor 0.7903".
+fn blocks(axis: &Axis, spans: &Spans, factors: &[f64], words: &dyn Fn(&Label) -> String) -> String {
+    let starts = cumulated(&spans.lengths);
+    let new = |i: &usize| !spans.lengths[..*i].iter().any(|length| (length - spans.lengths[*i]).abs() < 1e-9);
+    let shown = (2..factors.len()).filter(new).map(|i| {
+        let (length, factor) = (spans.lengths[i], factors[i]);
+        match &axis.labels[0] {
+            // Labels may say where a block ends: it begins after the columns before it.
+            Label::Year(first) if length > 1.0 && starts[i].fract() == 0.0 => {
+                let from = f64::from(*first) + starts[i];
+                format!(", the {} years from {from} have factor {factor:.4}", rounded(length))
+            }
+            _ => format!(", in {} ({}) {factor:.4}", words(&axis.labels[i]), years_long(length)),
+        }
+    });
+    shown.collect()
+}
+
+/// A length of time without its rounding.
+fn rounded(years: f64) -> f64 {
+    (years * 1e6).round() / 1e6
+}
+
+fn years_long(length: f64) -> String {
+    if length == 1.0 { "1 year".to_owned() } else { format!("{} years", rounded(length)) }
+}
+
 /// "a flow in 2026 has factor 1.0000, in 2027 0.9662".
 pub(crate) fn sentence(axis: &Axis, clock: &Clock, factors: &[f64]) -> String {
     let words = |label: &Label| match label {
-        Label::Number(n) if clock.spanned => format!("period {n}"),
+        Label::Number(n) if clock.spanned && axis.numbers_columns() => format!("period {n}"),
         label => label_words(label),
     };
     let mut text = format!("a flow in {} has factor {:.4}", words(&axis.labels[0]), factors[0]);
@@ -238,6 +264,7 @@ pub(crate) fn sentence(axis: &Axis, clock: &Clock, factors: &[f64]) -> String {
         text.push_str(&format!(", in {} {factor:.4}", words(label)));
     }
     if let Some(spans) = &axis.spans {
+        text.push_str(&blocks(axis, spans, factors, &words));
         return format!("{}, in {}: {text}", clock.timing, span_words(spans));
     }
     if clock.timed { format!("{}: {text}", clock.timing) } else { text }

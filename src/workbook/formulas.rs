@@ -3,7 +3,9 @@
 //! Texts are in the file's syntax (commas, no leading equals sign), valid in Excel and LibreOffice
 //! without array entry, and come with the result that the library computed.
 
-use crate::appraisal::{Appraisal, Choice, Direction, Held, Stream, StreamKind, Target, TargetRole};
+use crate::appraisal::{
+    Appraisal, Axis, Choice, Direction, Held, Label, Stream, StreamKind, Target, TargetRole,
+};
 use crate::layout::{Column, Layout};
 use crate::outcome::ChoiceOutcome;
 use crate::patch::{Cached, CellWrite};
@@ -173,14 +175,14 @@ pub fn pv_expression(
 ) -> Option<String> {
     let flows = &appraisal.choices[choice].streams[stream];
     let axis = &appraisal.axes[appraisal.choices[choice].axis];
-    let labels = refer(home, &layout.labels(choice));
+    let labels = layout.labels(choice);
     let block = layout.stream_factors(choice, stream);
     let factors = analyst_factors(appraisal, layout, outcomes, choice, Some(stream));
     let multipliers = layout.multipliers(choice, stream);
     let along: Vec<&Area> = [&flows.at, &axis.at].into_iter().chain(factors).collect();
     let product = in_pieces(&along, |piece| {
         let part = |at: &SheetRange| piece.of(home, &Area::from(at.clone()));
-        let (cells, years) = (piece.of(home, &flows.at), piece.of(home, &axis.at));
+        let (cells, met) = (piece.of(home, &flows.at), meeting(axis, &labels, piece, home));
         match (factors.map(|at| piece.of(home, at)), axis.direction, &multipliers) {
             (Some(at), _, None) => format!("SUMPRODUCT({cells},{at})"),
             (Some(at), Direction::Down, Some(by)) => format!("SUMPRODUCT({cells},{at},{})", part(by)),
@@ -188,13 +190,13 @@ pub fn pv_expression(
             (None, Direction::Down, Some(by)) => format!("SUMPRODUCT({cells},{},{})", part(&block), part(by)),
             // A comparison of a column with a row is a table in both programs, without array entry.
             (None, Direction::Across, None) => {
-                format!("SUMPRODUCT(({labels}={years})*{}*{cells})", refer(home, &block))
+                format!("SUMPRODUCT({met}*{}*{cells})", refer(home, &block))
             }
             (None, Direction::Across, Some(by)) => {
-                format!("SUMPRODUCT(({labels}={years})*{}*{}*{cells})", refer(home, &block), refer(home, by))
+                format!("SUMPRODUCT({met}*{}*{}*{cells})", refer(home, &block), refer(home, by))
             }
             (Some(at), Direction::Across, Some(by)) => {
-                format!("SUMPRODUCT(({labels}={years})*{}*{cells}*{at})", refer(home, by))
+                format!("SUMPRODUCT({met}*{}*{cells}*{at})", refer(home, by))
             }
         }
     });
@@ -214,6 +216,18 @@ pub fn pv_expression(
     (text.chars().count() <= MAX_FORMULA).then_some(text)
 }
 
+/// Where the labels of a block (down) meet the years (across): a table of 1 and 0. By place too where labels repeat.
+fn meeting(axis: &Axis, labels: &SheetRange, piece: &Piece, home: &str) -> String {
+    let (all, years) = (refer(home, labels), piece.of(home, &axis.at));
+    if !axis.labels.windows(2).any(|pair| reads_as(&pair[0], &pair[1])) {
+        return format!("({all}={years})");
+    }
+    let first = refer(home, &SheetRange { sheet: labels.sheet.clone(), range: one(labels.range.first) });
+    let from = Piece { from: piece.from, count: 1 }.of(home, &axis.at);
+    let place = if piece.from == 0 { String::new() } else { format!("+{}", piece.from) };
+    format!("({all}={years})*(ROW({all})-ROW({first})=COLUMN({years})-COLUMN({from}){place})")
+}
+
 /// The undiscounted total of one stream as an expression for a formula on sheet `home`.
 pub fn sum_expression(
     appraisal: &Appraisal,
@@ -230,10 +244,10 @@ pub fn sum_expression(
             format!("SUMPRODUCT({},{})", piece.of(home, &flows.at), piece.of(home, &Area::from(by.clone())))
         }),
         (Some(by), Direction::Across) => {
-            let (labels, by) = (refer(home, &layout.labels(choice)), refer(home, &by));
+            let (labels, by) = (layout.labels(choice), refer(home, &by));
             in_pieces(&[&flows.at, &axis.at], |piece| {
-                let (cells, years) = (piece.of(home, &flows.at), piece.of(home, &axis.at));
-                format!("SUMPRODUCT(({labels}={years})*{by}*{cells})")
+                let (cells, met) = (piece.of(home, &flows.at), meeting(axis, &labels, piece, home));
+                format!("SUMPRODUCT({met}*{by}*{cells})")
             })
         }
     };
@@ -436,7 +450,11 @@ impl Maker<'_> {
         let label = cell_text(axis.at.nth(i), !across, across);
         let labels = refer(self.home, &self.layout.labels(self.choice));
         let values = refer(self.home, column);
-        format!("INDEX({values},MATCH({}{label},{labels},0))", prefix(self.home, &axis.at.sheet))
+        // Parts of a year bear the label of their year: the first of them is found, the others stand after it.
+        let after =
+            axis.labels[..i].iter().rev().take_while(|earlier| reads_as(earlier, &axis.labels[i])).count();
+        let after = if after == 0 { String::new() } else { format!("+{after}") };
+        format!("INDEX({values},MATCH({}{label},{labels},0){after})", prefix(self.home, &axis.at.sheet))
     }
 
     /// The analyst's factor cell where there is one, else the look-up.
@@ -469,5 +487,13 @@ impl Maker<'_> {
             None if !leading && text.starts_with('-') => format!("({text}{by})"),
             None => format!("{text}{by}"),
         }
+    }
+}
+
+/// Whether a spreadsheet takes two labels for the same.
+fn reads_as(a: &Label, b: &Label) -> bool {
+    match (a, b) {
+        (Label::Financial(_, a), Label::Financial(_, b)) => a.to_lowercase() == b.to_lowercase(),
+        _ => a == b,
     }
 }

@@ -11,7 +11,8 @@
 //! | labels | A | u |
 //! |---|---|---|
 //! | calendar or financial years, in which periods begin | first year - base year | 1: the base is a year |
-//! | numbers, the first of them 0 or 1 | 0 or s_1: period 0 is the base | s_1 |
+//! | numbers of years, in which periods begin | the first, counted from the base year 0 | 1: the base is a year |
+//! | numbers of columns, one by one from 0 or 1 | 0 or s_1: period 0 is the base | s_1 |
 //!
 //! With one year per column this is the rule of years, (year - base year) + p - q, and likewise the base period itself is
 //! undiscounted under `flows end, base end`. A month's flow at the end of month n, base at the end of month 0, has
@@ -22,15 +23,17 @@
 //! period, and the price base those at the middle of the base period: growth and inflation run over n_i = S_i + (s_i - u)/2
 //! years, which again is the difference of years where periods are years. A flow of several years stands at one moment,
 //! so eras and payback count it there; payback is linear between the moments. The length of the appraisal, and with it the
-//! service years of annual equivalents, reaches to the last year of a period.
+//! service years of annual equivalents, reaches to the last year of a period; where columns are parts of a year, service
+//! years are the whole years nearest to it, at least one.
 //!
 //! **Refused**: averaged flows, whose mean is over a year; dates and offsets, which say themselves where a flow stands; a
-//! tail after a last period that is not one year; the role `rates` with periods over a year; consumption.
+//! tail after a last period that is not one year; a residual value after a block of years, unless flows stand at ends, as
+//! it is left at the end of the block; the role `rates` with periods over a year; consumption.
 //!
 //! **Source**: common practice (compounding over parts of a year at the yearly rate); the moments are those of
 //! [`hence_core::Timing`], with a period's length in place of a year's.
 
-use crate::appraisal::{Label, Spans};
+use crate::appraisal::Spans;
 
 /// Where periods begin.
 #[derive(Clone, Debug, PartialEq)]
@@ -44,13 +47,11 @@ pub(crate) struct Periods {
 impl Periods {
     /// The periods of columns of these lengths.
     ///
-    /// **Arguments**: `first`, the first label; `years`, from the base year to it (its number, where it is one).
-    pub fn new(spans: &Spans, first: &Label, years: f64) -> Periods {
+    /// **Arguments**: `numbered`, whether labels number the columns; `years`, from the base year to the first label (its
+    /// number, where it is one).
+    pub fn new(spans: &Spans, numbered: bool, years: f64) -> Periods {
         let length = spans.lengths.first().copied().unwrap_or(1.0);
-        let (from, base) = match first {
-            Label::Number(_) => (years * length, length),
-            _ => (years, 1.0),
-        };
+        let (from, base) = if numbered { (years * length, length) } else { (years, 1.0) };
         Periods { starts: cumulated(&spans.lengths).iter().map(|start| whole(from + start)).collect(), base }
     }
 
@@ -101,11 +102,11 @@ mod tests {
     fn months_count_from_the_base_month() {
         let months = spans(&[1.0 / 12.0; 24]);
         // Month 0 is the base; the end of month 12 is a year after its end.
-        let from_0 = Periods::new(&months, &Label::Number(0), 0.0);
+        let from_0 = Periods::new(&months, true, 0.0);
         assert_eq!(from_0.offset(0, 1.0 / 12.0, 1.0, 1.0), 0.0);
         assert_eq!(from_0.offset(12, 1.0 / 12.0, 1.0, 1.0), 1.0);
         // Counted from 1, month 12 is the last of the first year.
-        let from_1 = Periods::new(&months, &Label::Number(1), 1.0);
+        let from_1 = Periods::new(&months, true, 1.0);
         assert_eq!(from_1.offset(11, 1.0 / 12.0, 1.0, 1.0), 1.0);
         assert!((from_1.offset(0, 1.0 / 12.0, 0.5, 1.0) - 0.5 / 12.0).abs() < 1e-15);
     }
@@ -113,7 +114,7 @@ mod tests {
     #[test]
     fn years_and_blocks_of_years() {
         // 2027, 2028, then 2029 to 2033, base 2026.
-        let mixed = Periods::new(&spans(&[1.0, 1.0, 5.0]), &Label::Year(2027), 1.0);
+        let mixed = Periods::new(&spans(&[1.0, 1.0, 5.0]), false, 1.0);
         let offsets = |flows, base| {
             [1.0, 1.0, 5.0]
                 .iter()

@@ -1,12 +1,12 @@
 //! From what a workbook says to its numbers: every option valued on its basis, and over the baseline.
 
 use hence_core::{
-    Basis, Catalogue, Curve, ErrorKind, Payback, Timing, Where, annual_equivalent, benefit_cost_ratio, dot,
-    sum,
+    Basis, Catalogue, Curve, ErrorKind, Payback, Position, Timing, Where, annual_equivalent,
+    benefit_cost_ratio, dot, sum,
 };
 
 use crate::adjust;
-use crate::appraisal::{Appraisal, Axis, COMMAND_LINE, Choice, Label, Stream, StreamKind};
+use crate::appraisal::{Appraisal, Axis, COMMAND_LINE, Choice, Given, Label, Stream, StreamKind};
 use crate::baseline::{increment, warn_baseline, warn_unequal_lives};
 use crate::clock::{Clock, base_words, base_year, label_words, sentence};
 use crate::dated;
@@ -185,8 +185,7 @@ fn value_choice(
         streams.push(outcome);
         further.push(later);
     }
-    // Rounding in an offset must not add a year.
-    let service_years = (clock.length() - 1e-9).ceil().max(0.0) as u32;
+    let service_years = service_years(axis, clock.length());
     let annuity = match service_years {
         0 => 0.0,
         n => annual_equivalent(&curve, 0.0, n).map_err(|error| from_core(&error, basis_place()))?.1,
@@ -227,6 +226,15 @@ fn value_choice(
     measure_gross(&mut outcome, &further, &clock);
     measure_units(&mut outcome, choice, None);
     Ok((outcome, moments))
+}
+
+/// Service years of the annual equivalent: years begun, or the whole years nearest where columns are parts of a year, so
+/// that one part alone does not add a year.
+fn service_years(axis: &Axis, length: f64) -> u32 {
+    let parts = axis.spans.as_ref().is_some_and(|spans| spans.lengths.iter().any(|s| *s < 1.0 - 1e-9));
+    // Rounding in an offset must not add a year; time that passes is a year at least.
+    let begun = (length - 1e-9).ceil().max(0.0);
+    if parts && begun > 0.0 { length.round().max(1.0) as u32 } else { begun as u32 }
 }
 
 /// The factor of every year.
@@ -299,6 +307,24 @@ pub(crate) fn push_once(problems: &mut Vec<Problem>, problem: Problem) {
     }
 }
 
+/// What is left over is left at the end of the last column: refused where the flows of a block stand before that.
+fn left_within(residual: &Given<f64>, axis: &Axis, clock: &Clock) -> Option<Problem> {
+    let spans = axis.spans.as_ref()?;
+    let last = spans.lengths.last().copied()?;
+    if last < 1.0 + 1e-9 || clock.timing.flows == Position::End {
+        return None;
+    }
+    let message = format!(
+        "what is left over is left at the end of the last column, which is {last} years ({}), and its flows stand before that",
+        spans.from
+    );
+    Some(
+        Problem::error("span-role", place_of(&residual.at, &residual.from), message).hint(
+            "add a last column of one year, or let flows stand at the end of their periods (flows end)",
+        ),
+    )
+}
+
 fn value_stream(
     stream: &Stream,
     (choice, axis, weight): (&Choice, &Axis, Option<f64>),
@@ -317,6 +343,9 @@ fn value_stream(
     let last = flows.len() - 1;
     let last_flow = flows[last];
     if let Some(residual) = &stream.residual {
+        if let Some(problem) = left_within(residual, axis, clock) {
+            return Err(problem.into());
+        }
         // Left over in the prices of the last year, as its flow is.
         let amount = residual.value * stream.unit * multiplier(last);
         flows[last] += if stream.kind == StreamKind::Cost { -amount } else { amount };

@@ -37,6 +37,31 @@ fn factors_are_looked_up_by_the_analysts_year() {
     assert_eq!(target_writes(&a, &o, &layout, 1, target, false)[0], CellWrite::Number(1.0));
 }
 
+/// Two half-years of 2026 both bear its label, in rows 8 and 9 of Discounting.
+#[test]
+fn labels_that_repeat_are_told_apart_by_their_place() {
+    let case = case(Direction::Across, false);
+    let (mut a, names) = (appraisal(&case), SheetNames::choose(&[]));
+    let o = outcomes(&case, &a);
+    for axis in &mut a.axes {
+        axis.labels[1] = axis.labels[0].clone();
+    }
+    let layout = Layout::new(&a, &o, &names);
+    assert_eq!(
+        pv_expression(&a, &o, &layout, 1, 1, "It's a liner").unwrap(),
+        "SUMPRODUCT((Discounting!$A$8:$A$17=$C$4:$L$4)*(ROW(Discounting!$A$8:$A$17)-ROW(Discounting!$A$8)=\
+         COLUMN($C$4:$L$4)-COLUMN($C$4))*Discounting!$D$8:$D$17*$C$11:$L$11)"
+    );
+    let net = a.choices[1].targets.iter().find(|t| t.role == TargetRole::PvByYear(None)).expect("a row");
+    let writes = target_writes(&a, &o, &layout, 1, net, true);
+    let looked_up = |label: &str, more: &str| {
+        format!("*INDEX(Discounting!$D$8:$D$17,MATCH({label}$4,Discounting!$A$8:$A$17,0){more})")
+    };
+    assert!(formula(&writes[0]).ends_with(&looked_up("C", "")), "{}", formula(&writes[0]));
+    assert!(formula(&writes[1]).ends_with(&looked_up("D", "+1")), "{}", formula(&writes[1]));
+    assert!(formula(&writes[2]).ends_with(&looked_up("E", "")), "{}", formula(&writes[2]));
+}
+
 #[test]
 fn present_values_multiply_flows_and_the_analysts_factors() {
     let case = case(Direction::Across, true);

@@ -112,6 +112,32 @@ fn a_price_that_grows_against_others_does_so_from_the_price_base() {
     close(npv(&plan("'4%", more, names)), flow(2) / 1.04 + flow(3) / 1.04f64.powi(2) - 80.0);
 }
 
+/// What the command line says moves what values are expressed in, and leaves the prices of each year as they are.
+#[test]
+fn another_base_or_price_year_does_not_move_the_year_from_which_a_price_grows() {
+    let told = |small: &Small, base: Option<&str>, prices: Option<&str>| {
+        let (base, prices) = (base.map(str::to_owned), prices.map(str::to_owned));
+        let request = FillRequest { base, prices, ..FillRequest::default() };
+        let out = fill(&small.open().0, &request, &Catalogue::builtin()).unwrap_or_else(|e| panic!("{e}"));
+        assert_eq!(out.report.verdict, VERDICT_AGREES);
+        out.report.options[0].absolute.npv
+    };
+    // 100 x 1.1 in 2026 and 100 x 1.21 in 2027 for 100 in 2025, four years on.
+    let grown = plan("'4%", "F2: 0.1", "hence_growth_access F2");
+    let expected = 110.0 / 1.04 + 121.0 / 1.04f64.powi(2) - 100.0;
+    close(told(&grown, Some("2029"), None), expected * 1.04f64.powi(4));
+    // Inflation of 25% taken out to prices of 2025, then to those of 2029; growth stays from 2025.
+    let flow = |n: i32| 100.0 * (1.1f64 / 1.25 / 1.04).powi(n);
+    let expected = flow(1) + flow(2) - 100.0;
+    let names = "hence_price_basis F1, hence_prices G1, hence_growth_access F2";
+    let real = plan("'4%", "F1: 'real 2025 | 0.25\nF2: 0.1", names);
+    close(told(&real, None, Some("real 2029")), expected * 1.25f64.powi(4));
+    close(told(&real, Some("2029"), None), expected * 1.04f64.powi(4));
+    let nominal = plan("'4%", "F1: 'nominal | 0.25\nF2: 0.1", names);
+    close(told(&nominal, Some("2029"), None), expected * (1.25f64 * 1.04).powi(4));
+    close(told(&nominal, None, Some("real 2029")), expected * 1.25f64.powi(4));
+}
+
 #[test]
 fn what_is_left_over_and_what_goes_on_are_in_the_prices_of_their_years() {
     // 50 left over of the works in 2027 are 32 in prices of 2025.

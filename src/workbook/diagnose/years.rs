@@ -41,7 +41,9 @@ pub(super) fn findings(look: &Look) -> Vec<Finding> {
             })
             .collect();
         let gaps: Vec<usize> = (1..years.len()).filter(|i| years[*i] != years[i - 1] + 1).collect();
-        let slip = years.len() >= FEWEST_YEARS && (1..=MOST_GAPS).contains(&gaps.len());
+        // Years per column say what each label should be.
+        let slip =
+            axis.spans.is_none() && years.len() >= FEWEST_YEARS && (1..=MOST_GAPS).contains(&gaps.len());
         if !slip || years.len() < axis.labels.len() {
             continue;
         }

@@ -3,6 +3,7 @@
 use std::collections::BTreeMap;
 
 use crate::appraisal::{Axis, Choice, Stream, StreamKind};
+use crate::clock::base_year;
 use crate::decide::Rule;
 use crate::problem::{Place, Problem};
 use crate::reading::Value;
@@ -73,11 +74,15 @@ fn choice(
     let base = years::base(context, split.of(group, Role::Base), told.base, axis);
     let basis = settings::basis(context, split.of(group, Role::Basis), told.basis);
     let timing = split.of(group, Role::Timing).and_then(|named| settings::timing(context, named));
-    let prices = prices::prices(context, split, group, told.prices, axis);
+    let mut prices = prices::prices(context, split, group, told.prices, axis);
     let streams = streams::streams(context, split, group, axis);
     let welfare = welfare::welfare(context, split, group, axis, &streams);
     let effects = streams::effects(context, split, group, axis);
     let (base, basis) = (base?, basis?);
+    if prices.growth_from.is_none() {
+        let own = years::own_base_year(context, split.of(group, Role::Base), axis);
+        prices.growth_from = own.or_else(|| base_year(&base.value));
+    }
     let mut choice = Choice {
         name: group.name.clone(),
         base,

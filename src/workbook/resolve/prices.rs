@@ -26,7 +26,9 @@ pub(super) fn prices(
     let declared = split.of(group, Role::PriceBasis);
     let levels = split.of(group, Role::Prices).and_then(|named| levels(context, named, axis));
     let instead = told.map(|told| Named::told(Role::PriceBasis, "--prices", told));
-    let mut prices = Prices { declared: declared.and_then(|named| price_basis(context, named)), levels };
+    let declares = declared.and_then(|named| price_basis(context, named));
+    let growth_from = declares.as_ref().and_then(|given| given.value.year);
+    let mut prices = Prices { declared: declares, levels, growth_from };
     if let Some(given) = instead.and_then(|named| price_basis(context, &named)) {
         if prices.levels.is_none() && year_differs(&prices, &given) {
             context.report(unconverted(&given, declared));

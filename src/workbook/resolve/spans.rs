@@ -129,10 +129,9 @@ fn labels_fit(spans: &Spans, axis: &Axis) -> Checked<Option<Problem>> {
     let begins = |i: usize| first + (starts[i] + 1e-9).floor();
     let ends = |i: usize| first + (starts[i] + spans.lengths[i] - 1e-9).ceil() - 1.0;
     let fits = |named: &dyn Fn(usize) -> f64| (0..values.len()).find(|i| values[*i] != named(*i));
-    let by_number = if numbered { fits(&|i| first + i as f64) } else { Some(0) };
     let by_begin = fits(&begins);
     let by_end = if whole(spans.lengths[0]) == 1.0 { fits(&ends) } else { Some(0) };
-    if by_number.is_none() {
+    if axis.numbers_columns() {
         return Ok(None);
     }
     if by_begin.is_none() {

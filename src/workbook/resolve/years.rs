@@ -1,6 +1,6 @@
 //! The years of the flows, and the base they are counted from.
 
-use chrono::{Days, NaiveDate};
+use chrono::{Datelike, Days, NaiveDate};
 use hence_core::parse_financial_year;
 
 use crate::appraisal::{Axis, Base, COMMAND_LINE, Direction, Given, Label};
@@ -55,8 +55,9 @@ pub(super) fn axis(context: &mut Context, named: &Named, span: Option<&Named>) -
         match read {
             Ok(label) => {
                 let last = labels.last().and_then(Option::as_ref);
+                // Where columns are not a year each, labels are judged by the years per column.
                 if let Some(problem) = last.and_then(|last| step(last, &label, place))
-                    && !(problem.code == "years-gap" && span.is_some())
+                    && !(matches!(problem.code, "years-gap" | "years-repeat") && span.is_some())
                 {
                     context.report(problem);
                 }
@@ -232,6 +233,24 @@ pub(super) fn base(
         return Some(Given { at: named.and_then(Named::cells), from: COMMAND_LINE.to_owned(), ..given });
     }
     read_base(context, named, axis)
+}
+
+/// The calendar year of the base that the workbook states, whatever the command line says; nothing where it states
+/// none, or where years are counted from the base, whichever it is.
+pub(super) fn own_base_year(context: &mut Context, named: Option<&Named>, axis: &Axis) -> Option<i32> {
+    let named = named?;
+    if matches!(axis.labels.first(), Some(Label::Number(_) | Label::Offset(_))) {
+        return None;
+    }
+    let content = match &named.stated {
+        Some(value) => ReadCell { value: value.clone(), ..ReadCell::default() },
+        None => context.grid(&named.at)?.get(named.at.range.first).cloned()?,
+    };
+    match label(&content, context.book.date1904, named.place()).ok()? {
+        Label::Year(year) | Label::Financial(year, _) => Some(year),
+        Label::Date(date) => Some(date.year()),
+        Label::Number(_) | Label::Offset(_) => None,
+    }
 }
 
 fn read_base(context: &mut Context, named: Option<&Named>, axis: &Axis) -> Option<Given<Base>> {

@@ -110,7 +110,7 @@ impl Maker<'_> {
             (Some(income), Some(reference), Some(eta)) => (reference.value / income.value).powf(eta.value),
             _ => 1.0,
         };
-        deflator * (1.0 + growth).powf(n) * weight
+        deflator * (1.0 + growth).powf(n + growth_lead(choice)) * weight
     }
 }
 
@@ -132,9 +132,21 @@ fn formula(stream: &Stream, choice: &Choice, i: usize, base: usize, n: &str, hom
     }
     if let Some(given) = &stream.growth {
         let growth = given.at.as_ref().map_or_else(|| constant(given.value), |at| refer(home, at));
-        parts.push(format!("(1+{growth})^{n}"));
+        parts.push(match choice.prices.growth_from.filter(|_| growth_lead(choice) != 0.0) {
+            Some(from) => format!("(1+{growth})^({n}+{}-{from})", price_base_cell(choice, home)),
+            None => format!("(1+{growth})^{n}"),
+        });
     }
     parts.join("*")
+}
+
+/// Years to the price base from the year from which prices grow, where the command line gave another base or prices.
+fn growth_lead(choice: &Choice) -> f64 {
+    let to = choice.prices.year().or(base_year(&choice.base.value));
+    match (to, choice.prices.growth_from) {
+        (Some(to), Some(from)) => f64::from(to) - f64::from(from),
+        _ => 0.0,
+    }
 }
 
 /// Years from the base year to the year of the price base.
@@ -159,17 +171,22 @@ fn price_years(axis: &Axis, i: usize, choice: &Choice) -> f64 {
     }
 }
 
-/// The same from the label's cell and, where no price year is stated, the base's.
-fn years_formula(label_cell: &str, label: &Label, choice: &Choice, home: &str) -> String {
-    let stated = choice.prices.year();
+/// The year of the price base as stated or, where no price year is, from the base's cell.
+fn price_base_cell(choice: &Choice, home: &str) -> String {
     let base_cell = choice.base.at.as_ref().map(|at| refer(home, at));
-    let base = base_year(&choice.base.value).unwrap_or(0);
-    let from = match (stated, &choice.base.value, base_cell) {
+    match (choice.prices.year(), &choice.base.value, base_cell) {
         (Some(year), ..) => year.to_string(),
         (None, Base::Year(_), Some(cell)) => cell,
         (None, Base::Date(_), Some(cell)) => format!("YEAR({cell})"),
-        (None, ..) => base.to_string(),
-    };
+        (None, ..) => base_year(&choice.base.value).unwrap_or(0).to_string(),
+    }
+}
+
+/// The same from the label's cell and, where no price year is stated, the base's.
+fn years_formula(label_cell: &str, label: &Label, choice: &Choice, home: &str) -> String {
+    let stated = choice.prices.year();
+    let base = base_year(&choice.base.value).unwrap_or(0);
+    let from = price_base_cell(choice, home);
     match label {
         Label::Year(_) => format!("{label_cell}-{from}"),
         Label::Date(_) => format!("YEAR({label_cell})-{from}"),

@@ -25,7 +25,8 @@ pub(super) fn rebuilt(axis: &Axis, spans: &Spans, choice: &Choice, timing: Timin
     let (flows, base) = positions(timing);
     let first = spans.lengths[0];
     let (mut start, unit) = match &axis.labels[0] {
-        Label::Number(n) => (f64::from(*n) * first, first),
+        Label::Number(n) if axis.numbers_columns() => (f64::from(*n) * first, first),
+        Label::Number(n) => (f64::from(*n), 1.0),
         Label::Year(year) | Label::Financial(year, _) => {
             (f64::from(*year) - f64::from(base_year(&choice.base.value).unwrap_or(0)), 1.0)
         }
@@ -70,7 +71,8 @@ pub(super) fn formula(
     };
     let first = refer_cell(home, &axis.at.sheet, axis.at.nth(0));
     let (from, unit) = match &axis.labels[0] {
-        Label::Number(_) => (format!("{first}*{}", length(0)), length(0)),
+        Label::Number(_) if axis.numbers_columns() => (format!("{first}*{}", length(0)), length(0)),
+        Label::Number(_) => (first, "1".to_owned()),
         label => {
             let year = match label {
                 Label::Financial(year, _) => year.to_string(),

@@ -21,7 +21,7 @@ pub(super) struct Rebuilt {
     /// Offsets rebuilt from the labels.
     pub offsets: Vec<f64>,
     factors: Option<Vec<f64>>,
-    /// N of the annual equivalent: years begun from the base to the last flow.
+    /// N of the annual equivalent: years begun from the base to the last flow, the nearest where columns are parts of one.
     service_years: u32,
     /// Every factor is the mean of those at start and end of its year.
     pub averaged: bool,
@@ -67,7 +67,12 @@ impl Rebuilt {
             Some(spans) => periods::length(&offsets, spans, outcome.timing),
             None => fold(f64::max, 0.0),
         };
-        let service_years = (length - 1e-9).ceil().max(0.0) as u32;
+        let shortest = axis.spans.iter().flat_map(|spans| &spans.lengths).copied().fold(1.0, f64::min);
+        let service_years = match length {
+            // Parts of a year: the nearest whole year, the first one even where it is not reached by half.
+            years if years > 1e-9 && shortest < 1.0 - 1e-9 => ((years + 0.5).floor() as u32).max(1),
+            years => (years - 1e-9).ceil().max(0.0) as u32,
+        };
         let reach = length.max(1.0).max(f64::from(service_years));
         let at = Where { base_year: base_year(&choice.base.value), length: Some(length) };
         let route = Route::of(super::block_basis(input, block).spec(), &at, lowest, reach);
