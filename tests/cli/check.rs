@@ -172,6 +172,25 @@ fn several_workbooks_and_a_folder() {
 }
 
 #[test]
+fn a_folder_of_audited_outputs_is_checked() {
+    let (right, wrong) = (filled(), flat_for_bands());
+    let folder = tempfile::tempdir().unwrap();
+    std::fs::write(folder.path().join("a.audited.xlsx"), right.bytes()).unwrap();
+    let whole = folder.path().to_str().unwrap();
+    let output = run(&["check", whole]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    assert!(stdout(&output).contains("all 129 filled cells agree"), "{}", stdout(&output));
+    std::fs::write(folder.path().join("b.audited.xlsx"), wrong.bytes()).unwrap();
+    assert_eq!(code(&run(&["check", whole])), 1);
+    // What spreadsheet programs leave there is none.
+    let locks = tempfile::tempdir().unwrap();
+    std::fs::write(locks.path().join("~$a.xlsx"), b"open").unwrap();
+    let output = run(&["check", locks.path().to_str().unwrap()]);
+    assert_eq!(code(&output), 2);
+    assert!(stderr(&output).contains("in it but 1 file that a run skips"), "{}", stderr(&output));
+}
+
+#[test]
 fn a_marked_copy_holds_the_findings() {
     let book = changed(&[("C28", "0.97")]);
     let out = book.beside_arg("marked.xlsx");

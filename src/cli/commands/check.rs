@@ -12,7 +12,8 @@ use crate::args::Check;
 use crate::json::{Document, Found};
 use crate::numbers::{count, money};
 use crate::progress::Progress;
-use crate::shelf::gather::{gather, skipped_words};
+use crate::shelf::gather::gather;
+use crate::shelf::walk::For;
 use crate::terminal::{self, Terminal, escape};
 use crate::{Failure, Outcome, input, render};
 
@@ -54,15 +55,12 @@ pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
     let catalogue = super::catalogue(schedules)?;
     let (roles, plan) = (super::roles(&args.roles)?, super::planned(&args.roles, Some(&args.of))?);
     let request = CheckRequest { roles, plan };
-    let gathered = gather(&args.books, None)?;
-    for line in skipped_words(&gathered.skipped) {
-        terminal.say("note", &line);
-    }
+    let gathered = gather(&args.books, For::Checking)?;
+    let mut ended = gathered.tell(terminal);
     let paths: Vec<PathBuf> = gathered.inputs.into_iter().map(|input| input.path).collect();
     if let Some(out) = &args.out {
         one_output(&paths, out)?;
     }
-    let mut ended = Outcome::Done;
     let (mut books, mut texts) = (Vec::new(), Vec::new());
     let progress = Progress::start();
     for (i, path) in paths.iter().enumerate() {
