@@ -165,6 +165,12 @@ fn several_workbooks_and_a_folder() {
     assert_eq!(told, expected);
     assert!(stderr(&output).contains("c.xlsx: not checked"), "{}", stderr(&output));
     assert_eq!(code(&run(&["check", right.arg(), right.arg()])), 0);
+    // Each workbook is named before what is found in it.
+    let text = stdout(&run(&["check", right.arg(), wrong.arg()]));
+    let at = |part: &str| text.find(part).unwrap_or_else(|| panic!("{part} is missing from:\n{text}"));
+    let (of_right, of_wrong) = (at("all 129 filled cells agree"), at("1 finding;"));
+    assert!(at(right.arg()) < of_right && of_right < at(wrong.arg()), "{text}");
+    assert!(at(wrong.arg()) < of_wrong && of_wrong < at("flat-for-bands"), "{text}");
     let empty = tempfile::tempdir().unwrap();
     let output = run(&["check", empty.path().to_str().unwrap()]);
     assert_eq!(code(&output), 2);

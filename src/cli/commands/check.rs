@@ -151,14 +151,8 @@ fn checked(input: String, report: &CheckReport) -> CheckedBook {
     }
 }
 
+/// What was found in one workbook, its name first.
 fn text(input: &str, report: &CheckReport) -> String {
-    let mut text = String::new();
-    for finding in &report.findings {
-        text.push_str(&told(finding));
-    }
-    for place in &report.not_filled {
-        text.push_str(&format!("{place}: not filled\n"));
-    }
     let cells = match (report.differences.len(), report.agree) {
         (0, 0) => "nothing was filled, so nothing was compared".to_owned(),
         (0, 1) => "the one filled cell agrees with the declared basis".to_owned(),
@@ -166,9 +160,15 @@ fn text(input: &str, report: &CheckReport) -> String {
         (1, agree) => format!("1 cell differs, {agree} agree"),
         (differ, agree) => format!("{differ} cells differ, {agree} agree"),
     };
-    match report.findings.len() {
-        0 => text.push_str(&format!("{input}: {cells}\n")),
-        n => text.push_str(&format!("{input}: {}; {cells}\n", count(n, "finding"))),
+    let mut text = match report.findings.len() {
+        0 => format!("{input}: {cells}\n"),
+        n => format!("{input}: {}; {cells}\n", count(n, "finding")),
+    };
+    for finding in &report.findings {
+        text.push_str(&told(finding));
+    }
+    for place in &report.not_filled {
+        text.push_str(&format!("{place}: not filled\n"));
     }
     escape(&text)
 }
