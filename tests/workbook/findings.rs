@@ -70,6 +70,58 @@ fn digits_that_are_shown_or_typed_are_no_mistake() {
     }
 }
 
+/// The present values of a plan by year, and its totals, rounded to so many decimals.
+fn rounded_results(plan: &Plan, places: i32) -> String {
+    let mut cells = String::new();
+    let (mut costs, mut benefits) = (0.0, 0.0);
+    for (i, d) in plan.factors.iter().enumerate() {
+        let (cost, benefit) = Plan::flows(i);
+        let (cost, benefit) = (rounded(cost * d, places), rounded(benefit * d, places));
+        (costs, benefits) = (costs + cost, benefits + benefit);
+        cells.push_str(&format!("E{}: {cost} | {benefit}\n", 10 + i));
+    }
+    format!("{cells}B4: {}\nB5: {costs}\nB6: {benefits}\n", benefits - costs)
+}
+
+#[test]
+fn present_values_that_are_rounded_are_no_mistake() {
+    for shows in [Shows::All, Shows::Present] {
+        for places in [0, 1, 2] {
+            // Totals that are the sums of rounded numbers, and the ratio of their exact values.
+            let right = Plan::new(UK, 60, uk).shows(shows);
+            let cells = rounded_results(&right, places);
+            let report = right.with(&cells, "").checked();
+            assert_eq!(codes(&report), [""; 0], "{places}: {:?}", report.findings);
+        }
+        // One wrong number among them is still told.
+        let right = Plan::new(UK, 60, uk).shows(shows);
+        let cells = rounded_results(&right, 1);
+        let value = rounded(Plan::flows(12).1 * uk(12.0), 1);
+        let wrong = right.with(&format!("{cells}F22: {}\n", value + 3.0), "").checked();
+        assert_eq!(wrong.findings[0].place.to_string(), "Plan!F22 [hence_pv_water]", "{:?}", wrong.findings);
+    }
+    // And so are wrong factors beside them.
+    let wrong = Plan::new(UK, 60, flat(0.05));
+    let cells = rounded_results(&wrong, 2);
+    let found = wrong.with(&cells, "").checked().findings;
+    assert_eq!(found[0].kind, Kind::FlatForBands, "{}", show(&found[0]));
+}
+
+#[test]
+fn a_total_that_is_the_right_one_rounded_is_no_mistake() {
+    let right = Plan::npv(&Plan::new(UK, 60, uk).factors);
+    for shows in [Shows::All, Shows::Npv] {
+        for places in [-1, 0, 1, 2, 3, 6] {
+            let plan = Plan::new(UK, 60, uk).shows(shows);
+            let cell = |npv: f64| format!("B4: {}", rounded(npv, places));
+            assert_eq!(plan.with(&cell(right), "").codes(), [""; 0], "{right} to {places}");
+        }
+        // One unit of the last digit is no rounding.
+        let plan = Plan::new(UK, 60, uk).shows(shows).with(&format!("B4: {}", rounded(right, 0) + 1.0), "");
+        assert_eq!(plan.checked().findings[0].place.to_string(), "Plan!B4 [hence_npv]");
+    }
+}
+
 #[test]
 fn filled_samples_have_no_finding() {
     for sample in ["mine-drainage.xlsx", "mine-drainage-libreoffice.xlsx"] {

@@ -19,11 +19,12 @@ pub fn add(seen: &Seen, rows: &[Series], findings: &mut Vec<Finding>) -> Result<
         seen.compared.iter().filter(|cell| cell.standing == Standing::Differs).collect();
     rest.sort_by_key(|cell| order(&seen.target(cell).role));
     let mut explained = reach::of(seen, findings)?;
+    let rounded = seen.compared.iter().any(|cell| cell.rounded);
     let mut places: Vec<SheetRange> = Vec::new();
     for cells in rest.chunk_by(|a, b| (a.choice, a.target) == (b.choice, b.target)) {
         let role = &seen.target(cells[0]).role;
-        // Without a finding there is nothing to follow from.
-        let found = !findings.is_empty();
+        // Without a finding or rounded results there is nothing to follow from.
+        let found = !findings.is_empty() || rounded;
         let measured = matches!(role, TargetRole::Payback | TargetRole::Annual);
         let follows = |cell: &Compared| {
             found && (consequences.follows(cell) || measured && consequences.differs_before(cell.choice))
