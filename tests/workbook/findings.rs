@@ -70,6 +70,22 @@ fn digits_that_are_shown_or_typed_are_no_mistake() {
     }
 }
 
+#[test]
+fn cells_that_hold_an_error_value_are_said_to() {
+    let plan = Plan::new(UK, 20, uk);
+    let cells: String = (0..=20).map(|i| format!("D{}: #VALUE!\n", 10 + i)).collect();
+    let finding = plan.with(&format!("{cells}B4: #REF!\n"), "").checked().findings;
+    let [factors, npv] = &finding[..] else { panic!("{finding:?}") };
+    assert_eq!((factors.found.as_str(), npv.found.as_str()), ("#VALUE!", "#REF!"));
+    assert!(
+        factors.words.contains("21 of 21 cells") && factors.words.contains("hold an error value (#VALUE!)")
+    );
+    assert!(npv.words.contains("holds the error value #REF!"), "{}", npv.words);
+    for finding in [factors, npv] {
+        assert!(!finding.words.contains("no reason"), "{}", finding.words);
+    }
+}
+
 /// The present values of a plan by year, and its totals, rounded to so many decimals.
 fn rounded_results(plan: &Plan, places: i32) -> String {
     let mut cells = String::new();
