@@ -57,10 +57,7 @@ fn a_difference_is_listed_with_its_cell() {
     let found = &document["books"][0];
     assert_eq!((&found["status"], &found["agree"]), (&"problems".into(), &127.into()));
     let factor = &found["differences"][0];
-    assert_eq!(
-        (&factor["place"], &factor["found"]),
-        (&"Appraisal!C28 [hence_factor]".into(), &"0.97".into())
-    );
+    assert_eq!((&factor["place"], &factor["found"]), (&"Appraisal!C28 [hence_factor]".into(), &0.97.into()));
     assert!((factor["expected"].as_f64().unwrap() - 1.0 / 1.035).abs() < 1e-15);
     assert!((factor["difference"].as_f64().unwrap() - (0.97 - 1.0 / 1.035)).abs() < 1e-15);
     book.is_clean(&[]);
@@ -78,6 +75,13 @@ fn text_and_blanks_among_the_targets() {
     let output = run(&["check", text.arg()]);
     assert_eq!(code(&output), 1);
     assert!(stdout(&output).contains("about 1.1"), "{}", stdout(&output));
+    // Beside a text, what is expected is a text, too.
+    let document: serde_json::Value =
+        serde_json::from_str(&stdout(&run(&["check", text.arg(), "--json"]))).unwrap();
+    let ratio = &document["books"][0]["differences"][0];
+    assert_eq!((&ratio["found"], &ratio["difference"]), (&"about 1.1".into(), &serde_json::Value::Null));
+    let expected = ratio["expected"].as_str().expect("a text");
+    assert!(expected.parse::<f64>().is_ok(), "{expected}");
 }
 
 #[test]

@@ -45,9 +45,17 @@ struct FindingOut {
 struct DifferenceOut {
     place: String,
     role: String,
-    found: String,
-    expected: Option<f64>,
+    found: Content,
+    expected: Option<Content>,
     difference: Option<f64>,
+}
+
+/// What a cell holds or should hold: numbers where both are, else texts.
+#[derive(Serialize)]
+#[serde(untagged)]
+enum Content {
+    Number(f64),
+    Text(String),
 }
 
 /// Exit 0 when nothing is wrong, 1 on any finding.
@@ -133,12 +141,18 @@ fn checked(input: String, report: &CheckReport) -> CheckedBook {
         confidence: finding.confidence,
         words: finding.words.clone(),
     });
-    let differences = report.differences.iter().map(|d| DifferenceOut {
-        place: d.place.to_string(),
-        role: d.role.clone(),
-        found: d.found.clone(),
-        expected: d.expected,
-        difference: d.difference,
+    let differences = report.differences.iter().map(|d| {
+        let (found, expected) = match (d.number, d.expected) {
+            (Some(found), Some(expected)) => (Content::Number(found), Some(Content::Number(expected))),
+            (_, expected) => (Content::Text(d.found.clone()), expected.map(|x| Content::Text(x.to_string()))),
+        };
+        DifferenceOut {
+            place: d.place.to_string(),
+            role: d.role.clone(),
+            found,
+            expected,
+            difference: d.difference,
+        }
     });
     CheckedBook {
         input,
