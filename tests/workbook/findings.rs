@@ -502,11 +502,16 @@ fn a_formula_is_part_of_the_evidence() {
 /// Two options of 41 years against a baseline: Dams cost 900 now and gain 50 a year; Dunes cost 150 and gain 20 a year,
 /// and from year 31 on 60.
 fn options(factor: impl Fn(f64) -> f64) -> Small {
+    decided(factor, 900.0, "npv")
+}
+
+/// The same with another cost of Dams, ranked by a rule.
+fn decided(factor: impl Fn(f64) -> f64, dams: f64, rule: &str) -> Small {
     let years = 0..=40;
     let mut small = Small::default();
     for (name, first, gain) in [
         ("Nothing", 0.0, &(|_| 0.0) as &dyn Fn(usize) -> f64),
-        ("Dams", 900.0, &|_| 50.0),
+        ("Dams", dams, &|_| 50.0),
         ("Dunes", 150.0, &|i| if i > 30 { 60.0 } else { 20.0 }),
     ] {
         let (mut cells, mut npv) = (String::new(), 0.0);
@@ -518,14 +523,39 @@ fn options(factor: impl Fn(f64) -> f64) -> Small {
         }
         // Over the baseline, which costs 5 a year.
         let nothing: f64 = years.clone().skip(1).map(|i| -5.0 * factor(i as f64)).sum();
-        let cells =
-            format!("B1: 2026\nB2: '3.5% to 30, 0.5% after\nB3: 'Nothing\nB4: {}\n{cells}", npv - nothing);
+        let cells = format!(
+            "B1: 2026\nB2: '3.5% to 30, 0.5% after\nB3: 'Nothing\nB4: {}\nB5: '{rule}\n{cells}",
+            npv - nothing
+        );
         small = small.sheet(name, &cells).own_names(
             "hence_base B1, hence_basis B2, hence_years A10:A50, hence_cost_works B10:B50, \
              hence_benefit_safety C10:C50, hence_factor D10:D50, hence_npv B4",
         );
     }
-    small.names("hence_baseline B3")
+    small.names("hence_baseline B3, hence_decide B5")
+}
+
+#[test]
+fn the_ranking_is_that_of_the_declared_rule() {
+    let right = |t: f64| banded(&[(30.0, 0.035), (f64::INFINITY, 0.005)], t);
+    let gains = |gain: &dyn Fn(i32) -> f64, factor: &dyn Fn(f64) -> f64| -> f64 {
+        (1..=40).map(|i| (gain(i) - 5.0) * factor(f64::from(i))).sum()
+    };
+    let dunes = |factor: &dyn Fn(f64) -> f64| gains(&|i| if i > 30 { 60.0 } else { 20.0 }, factor) - 150.0;
+    // Dams come to less than Dunes as declared, and to more than Dunes with one rate for all years.
+    let between = (dunes(&right) + dunes(&flat(0.035))) / 2.0;
+    let dams = gains(&|_| 50.0, &right) - between;
+    let ranking = |rule: &str| {
+        let report = plan::checked(&decided(flat(0.035), dams, rule));
+        let of_dunes = report.findings.into_iter().find(|f| f.place.sheet.as_deref() == Some("Dunes"));
+        of_dunes.expect("a finding on the sheet of Dunes").ranking
+    };
+    let by_npv = ranking("npv").expect("the order of net present values changes");
+    assert!(by_npv.contains("rank Dams, Dunes"), "{by_npv}");
+    // By benefits over costs, Dunes stay first with either factors; by costs, too, and the factors move both alike.
+    for rule in ["ratio", "least cost"] {
+        assert_eq!(ranking(rule), None, "{rule}");
+    }
 }
 
 #[test]
