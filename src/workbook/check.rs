@@ -26,6 +26,8 @@ pub struct Difference {
     pub role: String,
     /// What it holds.
     pub found: String,
+    /// The same, where it is a number.
+    pub number: Option<f64>,
     /// What the basis gives; none where the measure is no number.
     pub expected: Option<f64>,
     /// Found less expected, where both are numbers.
@@ -173,6 +175,7 @@ fn difference(seen: &Seen, cell: &Compared) -> Difference {
         place: Place::cells(&cell.at.sheet, cell.at.range).called(&target.from),
         role: role_words(&target.role),
         found,
+        number: held.number(),
         expected,
         difference: held.number().zip(expected).map(|(found, expected)| found - expected),
     }

@@ -57,10 +57,7 @@ fn a_difference_is_listed_with_its_cell() {
     let found = &document["books"][0];
     assert_eq!((&found["status"], &found["agree"]), (&"problems".into(), &127.into()));
     let factor = &found["differences"][0];
-    assert_eq!(
-        (&factor["place"], &factor["found"]),
-        (&"Appraisal!C28 [hence_factor]".into(), &"0.97".into())
-    );
+    assert_eq!((&factor["place"], &factor["found"]), (&"Appraisal!C28 [hence_factor]".into(), &0.97.into()));
     assert!((factor["expected"].as_f64().unwrap() - 1.0 / 1.035).abs() < 1e-15);
     assert!((factor["difference"].as_f64().unwrap() - (0.97 - 1.0 / 1.035)).abs() < 1e-15);
     book.is_clean(&[]);
@@ -78,6 +75,13 @@ fn text_and_blanks_among_the_targets() {
     let output = run(&["check", text.arg()]);
     assert_eq!(code(&output), 1);
     assert!(stdout(&output).contains("about 1.1"), "{}", stdout(&output));
+    // Beside a text, what is expected is a text, too.
+    let document: serde_json::Value =
+        serde_json::from_str(&stdout(&run(&["check", text.arg(), "--json"]))).unwrap();
+    let ratio = &document["books"][0]["differences"][0];
+    assert_eq!((&ratio["found"], &ratio["difference"]), (&"about 1.1".into(), &serde_json::Value::Null));
+    let expected = ratio["expected"].as_str().expect("a text");
+    assert!(expected.parse::<f64>().is_ok(), "{expected}");
 }
 
 #[test]
@@ -165,10 +169,35 @@ fn several_workbooks_and_a_folder() {
     assert_eq!(told, expected);
     assert!(stderr(&output).contains("c.xlsx: not checked"), "{}", stderr(&output));
     assert_eq!(code(&run(&["check", right.arg(), right.arg()])), 0);
+    // Each workbook is named before what is found in it.
+    let text = stdout(&run(&["check", right.arg(), wrong.arg()]));
+    let at = |part: &str| text.find(part).unwrap_or_else(|| panic!("{part} is missing from:\n{text}"));
+    let (of_right, of_wrong) = (at("all 129 filled cells agree"), at("1 finding;"));
+    assert!(at(right.arg()) < of_right && of_right < at(wrong.arg()), "{text}");
+    assert!(at(wrong.arg()) < of_wrong && of_wrong < at("flat-for-bands"), "{text}");
     let empty = tempfile::tempdir().unwrap();
     let output = run(&["check", empty.path().to_str().unwrap()]);
     assert_eq!(code(&output), 2);
     assert!(stderr(&output).contains("no workbooks are in it"), "{}", stderr(&output));
+}
+
+#[test]
+fn a_folder_of_audited_outputs_is_checked() {
+    let (right, wrong) = (filled(), flat_for_bands());
+    let folder = tempfile::tempdir().unwrap();
+    std::fs::write(folder.path().join("a.audited.xlsx"), right.bytes()).unwrap();
+    let whole = folder.path().to_str().unwrap();
+    let output = run(&["check", whole]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    assert!(stdout(&output).contains("all 129 filled cells agree"), "{}", stdout(&output));
+    std::fs::write(folder.path().join("b.audited.xlsx"), wrong.bytes()).unwrap();
+    assert_eq!(code(&run(&["check", whole])), 1);
+    // What spreadsheet programs leave there is none.
+    let locks = tempfile::tempdir().unwrap();
+    std::fs::write(locks.path().join("~$a.xlsx"), b"open").unwrap();
+    let output = run(&["check", locks.path().to_str().unwrap()]);
+    assert_eq!(code(&output), 2);
+    assert!(stderr(&output).contains("in it but 1 file that a run skips"), "{}", stderr(&output));
 }
 
 #[test]

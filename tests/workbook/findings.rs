@@ -71,6 +71,74 @@ fn digits_that_are_shown_or_typed_are_no_mistake() {
 }
 
 #[test]
+fn cells_that_hold_an_error_value_are_said_to() {
+    let plan = Plan::new(UK, 20, uk);
+    let cells: String = (0..=20).map(|i| format!("D{}: #VALUE!\n", 10 + i)).collect();
+    let finding = plan.with(&format!("{cells}B4: #REF!\n"), "").checked().findings;
+    let [factors, npv] = &finding[..] else { panic!("{finding:?}") };
+    assert_eq!((factors.found.as_str(), npv.found.as_str()), ("#VALUE!", "#REF!"));
+    assert!(
+        factors.words.contains("21 of 21 cells") && factors.words.contains("hold an error value (#VALUE!)")
+    );
+    assert!(npv.words.contains("holds the error value #REF!"), "{}", npv.words);
+    for finding in [factors, npv] {
+        assert!(!finding.words.contains("no reason"), "{}", finding.words);
+    }
+}
+
+/// The present values of a plan by year, and its totals, rounded to so many decimals.
+fn rounded_results(plan: &Plan, places: i32) -> String {
+    let mut cells = String::new();
+    let (mut costs, mut benefits) = (0.0, 0.0);
+    for (i, d) in plan.factors.iter().enumerate() {
+        let (cost, benefit) = Plan::flows(i);
+        let (cost, benefit) = (rounded(cost * d, places), rounded(benefit * d, places));
+        (costs, benefits) = (costs + cost, benefits + benefit);
+        cells.push_str(&format!("E{}: {cost} | {benefit}\n", 10 + i));
+    }
+    format!("{cells}B4: {}\nB5: {costs}\nB6: {benefits}\n", benefits - costs)
+}
+
+#[test]
+fn present_values_that_are_rounded_are_no_mistake() {
+    for shows in [Shows::All, Shows::Present] {
+        for places in [0, 1, 2] {
+            // Totals that are the sums of rounded numbers, and the ratio of their exact values.
+            let right = Plan::new(UK, 60, uk).shows(shows);
+            let cells = rounded_results(&right, places);
+            let report = right.with(&cells, "").checked();
+            assert_eq!(codes(&report), [""; 0], "{places}: {:?}", report.findings);
+        }
+        // One wrong number among them is still told.
+        let right = Plan::new(UK, 60, uk).shows(shows);
+        let cells = rounded_results(&right, 1);
+        let value = rounded(Plan::flows(12).1 * uk(12.0), 1);
+        let wrong = right.with(&format!("{cells}F22: {}\n", value + 3.0), "").checked();
+        assert_eq!(wrong.findings[0].place.to_string(), "Plan!F22 [hence_pv_water]", "{:?}", wrong.findings);
+    }
+    // And so are wrong factors beside them.
+    let wrong = Plan::new(UK, 60, flat(0.05));
+    let cells = rounded_results(&wrong, 2);
+    let found = wrong.with(&cells, "").checked().findings;
+    assert_eq!(found[0].kind, Kind::FlatForBands, "{}", show(&found[0]));
+}
+
+#[test]
+fn a_total_that_is_the_right_one_rounded_is_no_mistake() {
+    let right = Plan::npv(&Plan::new(UK, 60, uk).factors);
+    for shows in [Shows::All, Shows::Npv] {
+        for places in [-1, 0, 1, 2, 3, 6] {
+            let plan = Plan::new(UK, 60, uk).shows(shows);
+            let cell = |npv: f64| format!("B4: {}", rounded(npv, places));
+            assert_eq!(plan.with(&cell(right), "").codes(), [""; 0], "{right} to {places}");
+        }
+        // One unit of the last digit is no rounding.
+        let plan = Plan::new(UK, 60, uk).shows(shows).with(&format!("B4: {}", rounded(right, 0) + 1.0), "");
+        assert_eq!(plan.checked().findings[0].place.to_string(), "Plan!B4 [hence_npv]");
+    }
+}
+
+#[test]
 fn filled_samples_have_no_finding() {
     for sample in ["mine-drainage.xlsx", "mine-drainage-libreoffice.xlsx"] {
         let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("../../samples").join(sample);
@@ -434,11 +502,16 @@ fn a_formula_is_part_of_the_evidence() {
 /// Two options of 41 years against a baseline: Dams cost 900 now and gain 50 a year; Dunes cost 150 and gain 20 a year,
 /// and from year 31 on 60.
 fn options(factor: impl Fn(f64) -> f64) -> Small {
+    decided(factor, 900.0, "npv")
+}
+
+/// The same with another cost of Dams, ranked by a rule.
+fn decided(factor: impl Fn(f64) -> f64, dams: f64, rule: &str) -> Small {
     let years = 0..=40;
     let mut small = Small::default();
     for (name, first, gain) in [
         ("Nothing", 0.0, &(|_| 0.0) as &dyn Fn(usize) -> f64),
-        ("Dams", 900.0, &|_| 50.0),
+        ("Dams", dams, &|_| 50.0),
         ("Dunes", 150.0, &|i| if i > 30 { 60.0 } else { 20.0 }),
     ] {
         let (mut cells, mut npv) = (String::new(), 0.0);
@@ -450,14 +523,39 @@ fn options(factor: impl Fn(f64) -> f64) -> Small {
         }
         // Over the baseline, which costs 5 a year.
         let nothing: f64 = years.clone().skip(1).map(|i| -5.0 * factor(i as f64)).sum();
-        let cells =
-            format!("B1: 2026\nB2: '3.5% to 30, 0.5% after\nB3: 'Nothing\nB4: {}\n{cells}", npv - nothing);
+        let cells = format!(
+            "B1: 2026\nB2: '3.5% to 30, 0.5% after\nB3: 'Nothing\nB4: {}\nB5: '{rule}\n{cells}",
+            npv - nothing
+        );
         small = small.sheet(name, &cells).own_names(
             "hence_base B1, hence_basis B2, hence_years A10:A50, hence_cost_works B10:B50, \
              hence_benefit_safety C10:C50, hence_factor D10:D50, hence_npv B4",
         );
     }
-    small.names("hence_baseline B3")
+    small.names("hence_baseline B3, hence_decide B5")
+}
+
+#[test]
+fn the_ranking_is_that_of_the_declared_rule() {
+    let right = |t: f64| banded(&[(30.0, 0.035), (f64::INFINITY, 0.005)], t);
+    let gains = |gain: &dyn Fn(i32) -> f64, factor: &dyn Fn(f64) -> f64| -> f64 {
+        (1..=40).map(|i| (gain(i) - 5.0) * factor(f64::from(i))).sum()
+    };
+    let dunes = |factor: &dyn Fn(f64) -> f64| gains(&|i| if i > 30 { 60.0 } else { 20.0 }, factor) - 150.0;
+    // Dams come to less than Dunes as declared, and to more than Dunes with one rate for all years.
+    let between = (dunes(&right) + dunes(&flat(0.035))) / 2.0;
+    let dams = gains(&|_| 50.0, &right) - between;
+    let ranking = |rule: &str| {
+        let report = plan::checked(&decided(flat(0.035), dams, rule));
+        let of_dunes = report.findings.into_iter().find(|f| f.place.sheet.as_deref() == Some("Dunes"));
+        of_dunes.expect("a finding on the sheet of Dunes").ranking
+    };
+    let by_npv = ranking("npv").expect("the order of net present values changes");
+    assert!(by_npv.contains("rank Dams, Dunes"), "{by_npv}");
+    // By benefits over costs, Dunes stay first with either factors; by costs, too, and the factors move both alike.
+    for rule in ["ratio", "least cost"] {
+        assert_eq!(ranking(rule), None, "{rule}");
+    }
 }
 
 #[test]

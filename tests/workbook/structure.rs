@@ -207,6 +207,18 @@ fn a_cost_with_a_slip_of_its_sign() {
     let mut plan = Plan::clean();
     plan.put(at(6, 5), "-40".into());
     assert_eq!(plan.codes(), Vec::<String>::new());
+    // Nor is scrap that is sold every fourth year, nor one of a size that comes now and then; a lone slip is one.
+    let scrap = |years: &[usize]| {
+        let mut plan = Plan::clean();
+        for i in 0..YEARS {
+            plan.put(at(6, i), if years.contains(&i) { "-18".into() } else { "20".into() });
+        }
+        plan.findings()
+    };
+    for years in [&[3, 7, 11, 15][..], &[4, 9]] {
+        assert!(scrap(years).iter().all(|f| f.kind.code() != "negative-cost"), "{:?}", scrap(years));
+    }
+    assert!(scrap(&[7]).iter().any(|f| f.kind.code() == "negative-cost"), "{:?}", scrap(&[7]));
     // Declared negative, and one is not.
     let mut plan = Plan::clean();
     plan.set("A22", "'costs negative").name("hence_signs", Some("A22"));
@@ -243,6 +255,13 @@ fn thousands_against_millions() {
     plan.put(at(10, 6), (water(6) * 1000.0).to_string());
     let finding = only(&plan, "unit-mismatch", "Plan!H10 [hence_benefit_water]");
     close(finding.effect_on_npv, water(6) * 999.0 * factor(6));
+    // What is left over in the last year is no other unit.
+    let mut plan = Plan::clean();
+    for i in 0..YEARS {
+        plan.put(at(10, i), if i + 1 == YEARS { "100000".into() } else { "100".into() });
+    }
+    let found = plan.findings();
+    assert!(found.iter().all(|f| f.kind.code() != "unit-mismatch"), "{found:?}");
     // A total that is scaled by a formula.
     let mut plan = Plan::clean();
     plan.set("B20", "=(B19-B18)/1000>0");

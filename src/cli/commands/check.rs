@@ -12,7 +12,8 @@ use crate::args::Check;
 use crate::json::{Document, Found};
 use crate::numbers::{count, money};
 use crate::progress::Progress;
-use crate::shelf::gather::{gather, skipped_words};
+use crate::shelf::gather::gather;
+use crate::shelf::walk::For;
 use crate::terminal::{self, Terminal, escape};
 use crate::{Failure, Outcome, input, render};
 
@@ -44,9 +45,17 @@ struct FindingOut {
 struct DifferenceOut {
     place: String,
     role: String,
-    found: String,
-    expected: Option<f64>,
+    found: Content,
+    expected: Option<Content>,
     difference: Option<f64>,
+}
+
+/// What a cell holds or should hold: numbers where both are, else texts.
+#[derive(Serialize)]
+#[serde(untagged)]
+enum Content {
+    Number(f64),
+    Text(String),
 }
 
 /// Exit 0 when nothing is wrong, 1 on any finding.
@@ -54,15 +63,12 @@ pub fn run(args: &Check, schedules: &Option<PathBuf>, terminal: &Terminal) -> Re
     let catalogue = super::catalogue(schedules)?;
     let (roles, plan) = (super::roles(&args.roles)?, super::planned(&args.roles, Some(&args.of))?);
     let request = CheckRequest { roles, plan };
-    let gathered = gather(&args.books, None)?;
-    for line in skipped_words(&gathered.skipped) {
-        terminal.say("note", &line);
-    }
+    let gathered = gather(&args.books, For::Checking)?;
+    let mut ended = gathered.tell(terminal);
     let paths: Vec<PathBuf> = gathered.inputs.into_iter().map(|input| input.path).collect();
     if let Some(out) = &args.out {
         one_output(&paths, out)?;
     }
-    let mut ended = Outcome::Done;
     let (mut books, mut texts) = (Vec::new(), Vec::new());
     let progress = Progress::start();
     for (i, path) in paths.iter().enumerate() {
@@ -135,12 +141,18 @@ fn checked(input: String, report: &CheckReport) -> CheckedBook {
         confidence: finding.confidence,
         words: finding.words.clone(),
     });
-    let differences = report.differences.iter().map(|d| DifferenceOut {
-        place: d.place.to_string(),
-        role: d.role.clone(),
-        found: d.found.clone(),
-        expected: d.expected,
-        difference: d.difference,
+    let differences = report.differences.iter().map(|d| {
+        let (found, expected) = match (d.number, d.expected) {
+            (Some(found), Some(expected)) => (Content::Number(found), Some(Content::Number(expected))),
+            (_, expected) => (Content::Text(d.found.clone()), expected.map(|x| Content::Text(x.to_string()))),
+        };
+        DifferenceOut {
+            place: d.place.to_string(),
+            role: d.role.clone(),
+            found,
+            expected,
+            difference: d.difference,
+        }
     });
     CheckedBook {
         input,
@@ -153,14 +165,8 @@ fn checked(input: String, report: &CheckReport) -> CheckedBook {
     }
 }
 
+/// What was found in one workbook, its name first.
 fn text(input: &str, report: &CheckReport) -> String {
-    let mut text = String::new();
-    for finding in &report.findings {
-        text.push_str(&told(finding));
-    }
-    for place in &report.not_filled {
-        text.push_str(&format!("{place}: not filled\n"));
-    }
     let cells = match (report.differences.len(), report.agree) {
         (0, 0) => "nothing was filled, so nothing was compared".to_owned(),
         (0, 1) => "the one filled cell agrees with the declared basis".to_owned(),
@@ -168,9 +174,15 @@ fn text(input: &str, report: &CheckReport) -> String {
         (1, agree) => format!("1 cell differs, {agree} agree"),
         (differ, agree) => format!("{differ} cells differ, {agree} agree"),
     };
-    match report.findings.len() {
-        0 => text.push_str(&format!("{input}: {cells}\n")),
-        n => text.push_str(&format!("{input}: {}; {cells}\n", count(n, "finding"))),
+    let mut text = match report.findings.len() {
+        0 => format!("{input}: {cells}\n"),
+        n => format!("{input}: {}; {cells}\n", count(n, "finding")),
+    };
+    for finding in &report.findings {
+        text.push_str(&told(finding));
+    }
+    for place in &report.not_filled {
+        text.push_str(&format!("{place}: not filled\n"));
     }
     escape(&text)
 }

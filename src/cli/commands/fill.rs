@@ -14,10 +14,11 @@ use crate::args::{Fill, WriteWhat};
 use crate::input::{self, Input};
 use crate::json::Document;
 use crate::outputs::{Folder, Output, outputs_for, stream};
-use crate::shelf::gather::{Gathered, gather, skipped_words};
+use crate::shelf::gather::{gather, skipped_words};
 use crate::shelf::pool::{self, Listener, Run};
 use crate::shelf::scratch::Scratch;
 use crate::shelf::telling::{How, Shown, Telling};
+use crate::shelf::walk::For;
 use crate::shelf::worker::{Limits, Task};
 use crate::terminal::{self, Terminal};
 use crate::{Failure, Outcome, ledger, limits};
@@ -27,7 +28,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     let catalogue = super::catalogue(schedules)?;
     let request = request(args, &catalogue)?;
     let order = Order { request, force: args.overwrite.force, resume: args.resume, found: false };
-    let all = gather(&args.books, args.out.as_deref())?;
+    let all = gather(&args.books, For::Filling(args.out.as_deref()))?;
     let outputs = outputs_for(&all.inputs, args.out.as_deref())?;
     let streams = outputs.contains(&Output::Stream);
     if streams && args.document.json {
@@ -47,7 +48,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     if args.resume {
         clear_up(&outputs);
     }
-    let ended = tell_skipped(&all, terminal);
+    let ended = all.tell(terminal);
     let shown: Vec<Shown> = all
         .inputs
         .iter()
@@ -176,17 +177,6 @@ fn clear_up(outputs: &[Output]) {
         }
         last = Some(folder);
     }
-}
-
-/// Says what the walk through folders passed over or could not read.
-fn tell_skipped(all: &Gathered, terminal: &Terminal) -> Outcome {
-    for line in skipped_words(&all.skipped) {
-        terminal.say("note", &line);
-    }
-    for (folder, why) in &all.unreadable {
-        terminal.complain(&format!("{} cannot be read: {why}", folder.display()));
-    }
-    if all.unreadable.is_empty() { Outcome::Done } else { Outcome::Wrong }
 }
 
 /// Fills one in this process: what comes from standard input or goes to standard output.

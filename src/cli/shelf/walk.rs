@@ -20,26 +20,37 @@ pub struct Walk {
     pub unreadable: Vec<(PathBuf, io::Error)>,
 }
 
+/// What workbooks are looked for.
+#[derive(Clone, Copy, Debug)]
+pub enum For<'a> {
+    /// To fill them: no audited outputs, and none in the folder that outputs go to.
+    Filling(Option<&'a Path>),
+    /// To check them: audited outputs, too.
+    Checking,
+}
+
 /// Whether a file is a workbook, by its extension.
 pub fn is_workbook(path: &Path) -> bool {
     let extension = path.extension().unwrap_or_default();
     EXTENSIONS.iter().any(|known| extension.eq_ignore_ascii_case(known))
 }
 
-/// Walks through a folder, following links, but never twice into the same folder and never into `out`.
+/// Walks through a folder, following links, but never twice into the same folder and never into that of the outputs.
 ///
 /// **Errors**: that the folder itself cannot be read.
-pub fn walk(root: &Path, out: Option<&Path>) -> io::Result<Walk> {
+pub fn walk(root: &Path, to: For) -> io::Result<Walk> {
     let mut found = Walk::default();
     let mut seen = BTreeSet::from([root.canonicalize()?]);
     // An output folder that is the walked one holds the inputs too.
-    seen.extend(out.and_then(|out| out.canonicalize().ok()));
+    if let For::Filling(Some(out)) = to {
+        seen.extend(out.canonicalize());
+    }
     std::fs::read_dir(root)?;
-    folder(root, Path::new(""), &mut seen, &mut found);
+    folder(root, Path::new(""), to, &mut seen, &mut found);
     Ok(found)
 }
 
-fn folder(root: &Path, inside: &Path, seen: &mut BTreeSet<PathBuf>, found: &mut Walk) {
+fn folder(root: &Path, inside: &Path, to: For, seen: &mut BTreeSet<PathBuf>, found: &mut Walk) {
     let entries = std::fs::read_dir(root.join(inside)).and_then(Iterator::collect::<io::Result<Vec<_>>>);
     let mut names = match entries {
         Ok(entries) => entries.into_iter().map(|entry| entry.file_name()).collect::<Vec<_>>(),
@@ -58,7 +69,7 @@ fn folder(root: &Path, inside: &Path, seen: &mut BTreeSet<PathBuf>, found: &mut 
             if name.starts_with('.') {
                 found.skipped.push((path, "hidden"));
             } else if real.is_ok_and(|real| seen.insert(real)) {
-                folder(root, &path, seen, found);
+                folder(root, &path, to, seen, found);
             } else {
                 found.skipped.push((path, "the output folder, or walked already"));
             }
@@ -68,7 +79,7 @@ fn folder(root: &Path, inside: &Path, seen: &mut BTreeSet<PathBuf>, found: &mut 
                 found.skipped.push((path, "a lock file of a spreadsheet program"));
             } else if name.starts_with('.') {
                 found.skipped.push((path, "hidden"));
-            } else if stem.ends_with(AUDITED) {
+            } else if matches!(to, For::Filling(_)) && stem.ends_with(AUDITED) {
                 found.skipped.push((path, "an audited output"));
             } else {
                 found.books.push(path);

@@ -3,10 +3,11 @@
 use super::consequences::Consequences;
 use super::factors::Series;
 use super::{Compared, Seen, Standing, reach};
-use crate::appraisal::TargetRole;
+use crate::appraisal::{Held, TargetRole};
 use crate::findings::{Finding, Kind};
 use crate::patch::Cached;
 use crate::plan::{span, words};
+use crate::preflight::ERRORS;
 use crate::problem::{Place, Result};
 use crate::references::SheetRange;
 use crate::sheets::role_words;
@@ -19,11 +20,12 @@ pub fn add(seen: &Seen, rows: &[Series], findings: &mut Vec<Finding>) -> Result<
         seen.compared.iter().filter(|cell| cell.standing == Standing::Differs).collect();
     rest.sort_by_key(|cell| order(&seen.target(cell).role));
     let mut explained = reach::of(seen, findings)?;
+    let rounded = seen.compared.iter().any(|cell| cell.rounded);
     let mut places: Vec<SheetRange> = Vec::new();
     for cells in rest.chunk_by(|a, b| (a.choice, a.target) == (b.choice, b.target)) {
         let role = &seen.target(cells[0]).role;
-        // Without a finding there is nothing to follow from.
-        let found = !findings.is_empty();
+        // Without a finding or rounded results there is nothing to follow from.
+        let found = !findings.is_empty() || rounded;
         let measured = matches!(role, TargetRole::Payback | TargetRole::Annual);
         let follows = |cell: &Compared| {
             found && (consequences.follows(cell) || measured && consequences.differs_before(cell.choice))
@@ -60,14 +62,24 @@ fn finding(seen: &Seen, cells: &[&Compared]) -> Option<Finding> {
     let places: Vec<SheetRange> = cells.iter().map(|cell| cell.at.clone()).collect();
     let place: Place = span(&places)?.called(&target.from);
     let held = seen.held(first);
-    let found = held.number().map_or_else(|| words(held), |x| x.to_string());
+    let error = error_value(held);
+    let found = match (held.number(), error) {
+        (Some(x), _) => x.to_string(),
+        (None, Some(error)) => error.to_owned(),
+        (None, None) => words(held),
+    };
     let expected = match &first.expected {
         Cached::Number(x) => x.to_string(),
         Cached::Text(text) => text.clone(),
         Cached::None => "no number".to_owned(),
     };
     let role = role_words(&target.role);
+    let in_error = cells.iter().filter(|cell| error_value(seen.held(cell)).is_some()).count();
     let words = match (cells.len(), target.held.len()) {
+        (1, 1) if in_error == 1 => format!("{role} holds the error value {found}, and no number"),
+        (n, all) if in_error == n => {
+            format!("{n} of {all} cells ({role}) hold an error value ({found}), and no numbers")
+        }
         (1, 1) => format!("{role} is not what the declared basis gives, and no reason is known"),
         (n, all) => format!(
             "{n} of {all} cells ({role}) do not hold what the declared basis gives, and no reason is known"
@@ -89,6 +101,17 @@ fn finding(seen: &Seen, cells: &[&Compared]) -> Option<Finding> {
         confidence: surely(first, difference),
         words,
     })
+}
+
+/// The error value that a cell shows, where it shows one.
+fn error_value(held: &Held) -> Option<&str> {
+    match held {
+        Held::Error(error) => Some(error),
+        Held::Formula { value: None, shown: Some(shown), .. } => {
+            ERRORS.contains(&shown.as_str()).then_some(shown)
+        }
+        _ => None,
+    }
 }
 
 /// How sure it is that a number differs: 1 less the tolerance over the difference; what is no number surely does.

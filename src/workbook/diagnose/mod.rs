@@ -15,6 +15,7 @@ mod lines;
 mod mend;
 mod reach;
 mod roots;
+mod rounding;
 mod rows;
 mod seen;
 mod signs;

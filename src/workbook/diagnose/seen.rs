@@ -4,6 +4,7 @@ use std::cell::RefCell;
 
 use hence_core::Catalogue;
 
+use super::rounding::Unit;
 use crate::appraisal::{Appraisal, Held, Target};
 use crate::formulas::expected;
 use crate::layout::Layout;
@@ -58,6 +59,8 @@ pub struct Compared {
     pub tolerance: f64,
     /// How the two stand to each other.
     pub standing: Standing,
+    /// The right number rounded to a unit larger than its format shows; the tolerance is half of that.
+    pub rounded: bool,
 }
 
 /// How a target cell stands to what the basis gives.
@@ -113,8 +116,11 @@ impl<'a> Seen<'a> {
         &self.target(compared).held[compared.index]
     }
 
-    /// Whether a cell's number was rounded to what its format shows.
+    /// Whether a cell's number was rounded, to what its format shows or to another unit.
     pub fn is_rounded(&self, compared: &Compared) -> bool {
+        if compared.rounded {
+            return true;
+        }
         let unit = 2.0 * tolerance::of_cell(self.target(compared), compared.index, 0.0);
         let Some(value) = self.held(compared).number().filter(|_| unit > 0.0) else { return false };
         ((value / unit).round() * unit - value).abs() <= 1e-9 * unit.max(value.abs())
@@ -132,14 +138,30 @@ fn compare(appraisal: &Appraisal, outcomes: &[ChoiceOutcome], layout: &Layout) -
     for (c, choice) in appraisal.choices.iter().enumerate() {
         for (t, target) in choice.targets.iter().enumerate() {
             let results = expected(appraisal, outcomes, layout, c, target);
+            let unit = Unit::of(target, &results);
             for (i, (held, expected)) in target.held.iter().zip(results).enumerate() {
-                let tolerance = match &expected {
+                let shown = match &expected {
                     Cached::Number(x) => tolerance::of_cell(target, i, *x),
                     _ => 0.0,
                 };
+                let rounds = |unit: &Unit| match (held.number(), &expected) {
+                    (Some(held), Cached::Number(x)) => unit.gives(held, *x),
+                    _ => false,
+                };
+                let half = unit.filter(rounds).map_or(0.0, |unit| unit.half() * (1.0 + 1e-9));
+                let (tolerance, rounded) = (shown.max(half), half > shown);
                 let standing = standing(held, &expected, tolerance);
                 let at = cell_of(&target.at, i);
-                compared.push(Compared { choice: c, target: t, index: i, at, expected, tolerance, standing });
+                compared.push(Compared {
+                    choice: c,
+                    target: t,
+                    index: i,
+                    at,
+                    expected,
+                    tolerance,
+                    standing,
+                    rounded,
+                });
             }
         }
     }

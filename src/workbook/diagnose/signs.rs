@@ -14,6 +14,9 @@ const USUAL: f64 = 3.0;
 /// How close it has to be to a cost beside it to be that cost with the other sign.
 const ALIKE: f64 = 0.1;
 
+/// How far two credits of one size may be from each other.
+const ONE_SIZE: f64 = 0.02;
+
 /// Costs whose sign is not that of their row, or of the costs as the workbook declares them.
 pub(super) fn findings(look: &Look) -> Vec<Finding> {
     let mut found: Vec<Finding> = Vec::new();
@@ -86,6 +89,9 @@ fn single(look: &Look, c: usize, s: usize) -> Option<Finding> {
         in_row || (usual / USUAL..=usual * USUAL).contains(&size(*i))
     };
     let odd: Vec<usize> = odd.into_iter().filter(ordinary).collect();
+    if are_credits(stream, &against, &odd) {
+        return None;
+    }
     let (first, last) = (*odd.first()?, *odd.last()?);
     let near = |i: usize| {
         let beside = against.iter().min_by_key(|j| j.abs_diff(i)).map_or(0.0, |j| size(*j));
@@ -115,6 +121,21 @@ fn single(look: &Look, c: usize, s: usize) -> Option<Finding> {
             figure(usual)
         ),
     })
+}
+
+/// Whether several odd costs of one size come at even distances of more than a year, or are each smaller than the costs
+/// before and after: what is sold or paid back now and then, and no slip.
+fn are_credits(stream: &Stream, against: &[usize], odd: &[usize]) -> bool {
+    let size = |i: usize| stream.raw[i].abs();
+    let alike = odd.windows(2).all(|pair| (size(pair[0]) / size(pair[1]) - 1.0).abs() <= ONE_SIZE);
+    let apart: Vec<usize> = odd.windows(2).map(|pair| pair[1] - pair[0]).collect();
+    let even = apart.len() > 1 && apart[0] > 1 && apart.iter().all(|years| *years == apart[0]);
+    let smaller = |i: &usize| {
+        let before = against.iter().rfind(|j| *j < i);
+        let after = against.iter().find(|j| *j > i);
+        before.into_iter().chain(after).all(|j| size(*i) < size(*j) * (1.0 - ONE_SIZE))
+    };
+    odd.len() > 1 && alike && (even || odd.iter().all(smaller))
 }
 
 fn at(range: &Range, i: usize) -> Cell {

@@ -215,9 +215,10 @@ fn within(look: &Look, c: usize, s: usize) -> Option<Finding> {
     let beside = if from > 0 { from - 1 } else { to };
     let inside = if from > 0 { from } else { to - 1 };
     let scale = near_scale(stream.raw[filled[inside]] / stream.raw[filled[beside]], CLOSE)?;
-    // Capital comes before running costs, and clearing away after them.
+    // Capital comes before running costs, and clearing away after them; what is left over or sold comes in the last year.
     let at_an_end = from == 0 || to == filled.len();
-    if at_an_end && scale > 1.0 && stream.kind == StreamKind::Cost {
+    let alone = to - from == 1;
+    if at_an_end && scale > 1.0 && (stream.kind == StreamKind::Cost || alone) {
         return None;
     }
     let mut added = vec![0.0; look.seen.appraisal.choices.len()];

@@ -30,7 +30,8 @@ impl Kind {
     }
 }
 
-const ERRORS: [&str; 8] =
+/// The error values that a file may hold.
+pub(crate) const ERRORS: [&str; 8] =
     ["#DIV/0!", "#N/A", "#NAME?", "#NULL!", "#NUM!", "#REF!", "#VALUE!", "#GETTING_DATA"];
 
 /// Longest text of a number, error, index or truth value.

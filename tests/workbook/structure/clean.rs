@@ -86,8 +86,13 @@ fn capital_before_running_costs_and_clearing_away_after_them_are_no_units() {
     // 900 at first, then 1 a year, and 900 again at the end: numbers of one unit.
     let years: Vec<String> = (0..30).map(|i| (2026 + i).to_string()).collect();
     let row = |at: &dyn Fn(usize) -> f64| (0..30).map(|i| at(i).to_string()).collect::<Vec<_>>().join(" | ");
-    let costs: [&dyn Fn(usize) -> f64; 2] =
-        [&|i| if i == 0 { 900.0 } else { 1.0 }, &|i| if i == 29 { 900.0 } else { 1.0 }];
+    let costs: [&dyn Fn(usize) -> f64; 5] = [
+        &|i| if i == 0 { 900.0 } else { 1.0 },
+        &|i| if i == 29 { 900.0 } else { 1.0 },
+        &|i| if i == 0 { 1_000_000.0 } else { 1000.0 },
+        &|i| if i == 0 { 900_000.0 } else { 1000.0 },
+        &|i| if i == 0 { 1500.0 } else { 1.4 },
+    ];
     for cost in costs {
         let npv: f64 = (0..30).map(|i| (40.0 - cost(i)) * 1.035_f64.powi(-(i as i32))).sum();
         let cells = format!(

@@ -172,12 +172,17 @@ fn implied(seen: &Seen, c: usize, target: &Target) -> Option<Series> {
     (!row.points.is_empty()).then_some(row)
 }
 
-/// Half of the last unit that each cell shows, where the numbers of the row were rounded to it; else nothing.
+/// Half of the unit that each cell was rounded to: its own, or that which its format shows, where the numbers of the row
+/// were rounded to it; else nothing.
 fn entered(seen: &Seen, c: usize, target: &Target) -> Vec<f64> {
     let cells: Vec<&Compared> =
         seen.compared.iter().filter(|cell| cell.choice == c && seen.target(cell).at == target.at).collect();
     let rounded = cells.iter().all(|cell| seen.held(cell).number().is_none() || seen.is_rounded(cell));
-    let half = |i: usize| if rounded { tolerance::of_cell(target, i, 0.0) } else { 0.0 };
+    let half = |i: usize| match cells.iter().find(|cell| cell.index == i && cell.rounded) {
+        Some(cell) => cell.tolerance,
+        None if rounded => tolerance::of_cell(target, i, 0.0),
+        None => 0.0,
+    };
     (0..target.held.len()).map(half).collect()
 }
 
