@@ -154,7 +154,7 @@ fn may_keep(
 ) -> Result<(), Failure> {
     let own = Identity::of(path);
     let output = |output: &Output| matches!(output, Output::File(path) if Identity::of(path) == own);
-    if inputs.iter().any(|input| Identity::of(&input.path) == own) || outputs.iter().any(output) {
+    if inputs.iter().any(|input| input::identity(&input.path) == own) || outputs.iter().any(output) {
         return Err(Failure::Message(format!("{flag} {}: this is one of the workbooks", path.display())));
     }
     let continued = args.resume && (ledger::is_one(path) || summary::is_one(path));
@@ -196,7 +196,8 @@ fn fill_here(
     order: &Order,
     catalogue: &Catalogue,
 ) -> (BookResult<Done>, Option<Vec<u8>>) {
-    let filled = input::open(book).and_then(|package| fill(&package, &order.request, catalogue));
+    let filled = output.is_not(book).and_then(|()| input::open(book));
+    let filled = filled.and_then(|package| fill(&package, &order.request, catalogue));
     let filled = filled.and_then(|filled| {
         if let Output::File(path) = output {
             write_atomically(path, &filled.bytes, order.force)?;

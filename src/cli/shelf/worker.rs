@@ -10,9 +10,9 @@ use std::sync::{Mutex, MutexGuard, PoisonError};
 use std::thread::JoinHandle;
 use std::time::{Duration, Instant};
 
-use hence_workbook::package::Pending;
+use hence_workbook::package::{Pending, same_file};
 use hence_workbook::problem::{Problem, WorkbookError};
-use hence_workbook::shelf::{Done, Order, mishap};
+use hence_workbook::shelf::{Done, Order, mishap, output_is_input};
 
 use super::pool::Run;
 use super::scratch::Scratch;
@@ -146,8 +146,14 @@ pub fn work(task: &Task, run: &Run, slot: &Slot, stop: &AtomicBool) -> Result<Do
     match received {
         Some(Err(Broken::Output(error))) => Err(error),
         Some(Ok((done, pending))) if status.is_some_and(|status| status.success()) => {
-            // An earlier output of hence was looked at by the process: it may be replaced.
-            pending.map_or(Ok(()), |pending| pending.commit(order.force || order.resume))?;
+            if let Some(pending) = pending {
+                // Folders may have come to be since the process compared the two.
+                if same_file(&task.input, &task.output) {
+                    return Err(output_is_input(&task.output));
+                }
+                // An earlier output of hence was looked at by the process: it may be replaced.
+                pending.commit(order.force || order.resume)?;
+            }
             Ok(done)
         }
         _ if late => Err(mishap::out_of_time(limits.time).into()),

@@ -87,7 +87,7 @@ fn attempt(
 }
 
 /// That the output would be the input.
-pub(crate) fn output_is_input(output: &Path) -> WorkbookError {
+pub fn output_is_input(output: &Path) -> WorkbookError {
     let message = format!("the output {} is the input, which is never written", output.display());
     Problem::error("output-is-input", Place::default(), message).hint("give --out another name").into()
 }
