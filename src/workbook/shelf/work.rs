@@ -71,16 +71,22 @@ fn attempt(
     if order.found && Workbook::read(&package).is_ok_and(|book| !own_sheets(&book).is_empty()) {
         return Ok((Done::Audited, None));
     }
+    let mut unknown = None;
     if order.resume && output.symlink_metadata().is_ok() {
         may_replace(output, true)?;
         let wanted = Wanted { input: package.file_name(), input_sha256: &hash, order, catalogue };
-        if let Some(record) = kept(output, &wanted)? {
-            return Ok((Done::Kept(record), None));
+        match earlier(output, &wanted)? {
+            Earlier::Done(record) => return Ok((Done::Kept(record), None)),
+            Earlier::Outdated => {}
+            Earlier::Unknown(bytes) => unknown = Some(bytes).filter(|_| !order.force),
         }
     } else {
         may_replace(output, order.force)?;
     }
     let filled = fill(&package, &order.request, catalogue)?;
+    if unknown.is_some_and(|bytes| !filled.bytes.starts_with(&bytes)) {
+        return Err(changed(output));
+    }
     let mut record = Record::filled(&filled.meta, &filled.report);
     record.output_sha256 = Some(sha256(&filled.bytes));
     Ok((Done::Filled(record), Some(filled.bytes)))
@@ -108,22 +114,29 @@ impl Wanted<'_> {
     }
 }
 
-/// The record of an output that need not be made again. One that may be replaced has none: made by hence from something
-/// else and not touched since, or damaged.
-///
-/// **Errors**: `output-changed` where another program saved it, since what a person did there would be lost.
-fn kept(output: &Path, wanted: &Wanted<'_>) -> Result<Option<Record>> {
-    let Ok(there) = Package::from_bytes("output", Package::read(output)?) else { return Ok(None) };
-    if let Some(record) = record_of(&there) {
-        let output_sha256 = Some(sha256(there.bytes()));
-        return Ok(wanted.is(&record).then_some(Record { output_sha256, ..record }));
-    }
-    let whole = there.parts().all(|part| there.part(part).is_ok());
-    if whole && !wanted.order.force {
-        let message = format!("{} is not as hence left it, or was not made by hence", output.display());
-        return Err(Problem::error("output-changed", Place::default(), message)
-            .hint("move it away, or replace it with --force")
-            .into());
-    }
-    Ok(None)
+/// What stands at the place of an output.
+enum Earlier {
+    /// What this run would make.
+    Done(Record),
+    /// What hence made from something else, not touched since.
+    Outdated,
+    /// Something else, with its bytes: it may be replaced where it is the beginning of the output, cut short, and else
+    /// not, since what a person or another program did there would be lost.
+    Unknown(Vec<u8>),
+}
+
+fn earlier(output: &Path, wanted: &Wanted<'_>) -> Result<Earlier> {
+    let bytes = Package::read(output)?;
+    let Ok(there) = Package::from_bytes("output", bytes.clone()) else { return Ok(Earlier::Unknown(bytes)) };
+    let Some(record) = record_of(&there) else { return Ok(Earlier::Unknown(bytes)) };
+    let output_sha256 = Some(sha256(&bytes));
+    Ok(if wanted.is(&record) { Earlier::Done(Record { output_sha256, ..record }) } else { Earlier::Outdated })
+}
+
+/// That another program saved an output.
+fn changed(output: &Path) -> WorkbookError {
+    let message = format!("{} is not as hence left it, or was not made by hence", output.display());
+    Problem::error("output-changed", Place::default(), message)
+        .hint("move it away, or replace it with --force")
+        .into()
 }

@@ -5,7 +5,7 @@ use std::time::SystemTime;
 
 use hence_workbook::package::{Changes, Package};
 
-use super::{Shelf, workbook};
+use super::{Shelf, password_protected, workbook};
 use crate::{code, stderr, stdout};
 
 const NAMES: [&str; 6] = ["a.xlsx", "b.xlsx", "c.xlsx", "d.xlsx", "sub/e.xlsx", "text.xlsx"];
@@ -106,6 +106,40 @@ fn what_a_person_did_to_an_output_is_not_lost() {
     let forced = shelf.fill("out", &[&ASKED[..], &["--resume", "--force"]].concat());
     assert!(stderr(&forced).contains("1 filled, 4 filled before"), "{}", stderr(&forced));
     assert!(std::fs::read(&path).unwrap() == made.bytes());
+}
+
+#[test]
+fn what_is_no_output_of_hence_is_not_replaced_as_a_damaged_one() {
+    let shelf = done();
+    let path = shelf.path("out/a.audited.xlsx");
+    let made = std::fs::read(&path).unwrap();
+    let resume = [&ASKED[..2], &["--resume"]].concat();
+    let mut otherwise_damaged = made.clone();
+    let middle = otherwise_damaged.len() / 2;
+    otherwise_damaged[middle] ^= 0xff;
+    let other_end = [&made[..middle], b"and more"].concat();
+    for theirs in [
+        password_protected(),
+        b"Dear Sir".to_vec(),
+        b"PK\x03\x04 and so on".to_vec(),
+        otherwise_damaged,
+        other_end,
+    ] {
+        std::fs::write(&path, &theirs).unwrap();
+        let refused = shelf.fill("out", &resume);
+        assert_eq!(code(&refused), 1);
+        let text = stderr(&refused);
+        assert!(text.contains("a.audited.xlsx is not as hence left it"), "{text}");
+        assert!(text.contains("(output-changed)"), "{text}");
+        assert!(std::fs::read(&path).unwrap() == theirs);
+    }
+    // What a full disk leaves: the beginning, or nothing.
+    for length in [0, 1, middle, made.len() - 1] {
+        std::fs::write(&path, &made[..length]).unwrap();
+        let resumed = shelf.fill("out", &resume);
+        assert!(stderr(&resumed).contains("1 filled, 4 filled before"), "{}", stderr(&resumed));
+        assert!(std::fs::read(&path).unwrap() == made);
+    }
 }
 
 #[test]
