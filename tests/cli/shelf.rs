@@ -161,6 +161,8 @@ fn what_is_no_input_is_passed_over_and_told() {
     // An output under another name is known by the sheets in it.
     assert_eq!(code(&shelf.fill("first", &[])), 0);
     std::fs::copy(shelf.path("first/a.audited.xlsx"), shelf.path("shelf/renamed.xlsx")).unwrap();
+    // So is a summary.
+    assert_eq!(code(&shelf.fill("first", &["--force", "--summary", "shelf/summary.xlsx"])), 0);
     // Outputs lie in the folder that is walked.
     for _ in 0..2 {
         let output = shelf.fill("shelf/out", &["--force"]);
@@ -171,7 +173,7 @@ fn what_is_no_input_is_passed_over_and_told() {
             "skipped (a lock file of a spreadsheet program): shelf/~$a.xlsx",
             "skipped (hidden): shelf/.git, shelf/.hidden.xlsx",
             "skipped (an audited output): shelf/old.audited.xlsx",
-            "skipped (it holds audit sheets of hence): shelf/renamed.xlsx",
+            "skipped (it holds sheets made by hence): shelf/renamed.xlsx, shelf/summary.xlsx",
             "2 workbooks: 2 filled",
         ] {
             assert!(text.contains(part), "{part} is missing from:\n{text}");

@@ -22,6 +22,9 @@ use crate::shelf::worker::{Limits, Task};
 use crate::terminal::{self, Terminal};
 use crate::{Failure, Outcome, ledger, limits};
 
+const LEDGER: &str = "--ledger";
+const SUMMARY: &str = "--summary";
+
 /// Fills every workbook; one that fails does not keep the others from being filled.
 pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
@@ -35,7 +38,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
             "--json and a workbook both want standard output\nTry: --out with a file".into(),
         ));
     }
-    for (path, flag) in [(&args.ledger, "--ledger"), (&args.summary, "--summary")] {
+    for (path, flag) in [(&args.ledger, LEDGER), (&args.summary, SUMMARY)] {
         if let Some(path) = path {
             may_keep(path, flag, args, &all.inputs, &outputs)?;
         }
@@ -87,7 +90,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     let audited: Vec<(PathBuf, &str)> = telling
         .audited
         .iter()
-        .map(|i| (all.inputs[*i].path.clone(), "it holds audit sheets of hence"))
+        .map(|i| (all.inputs[*i].path.clone(), "it holds sheets made by hence"))
         .collect();
     for line in skipped_words(&audited) {
         terminal.say("note", &line);
@@ -157,8 +160,11 @@ fn may_keep(
     if inputs.iter().any(|input| input::identity(&input.path) == own) || outputs.iter().any(output) {
         return Err(Failure::Message(format!("{flag} {}: this is one of the workbooks", path.display())));
     }
-    let continued = args.resume && (ledger::is_one(path) || summary::is_one(path));
-    may_write(path, args.overwrite.force || continued).map_err(message)
+    let shown: Vec<String> = inputs.iter().map(|input| input::shown(&input.path)).collect();
+    let shown: Vec<&str> = shown.iter().map(String::as_str).collect();
+    let earlier = path.is_file()
+        && if flag == LEDGER { ledger::is_of_run(path, &shown) } else { summary::is_of_run(path, &shown) };
+    may_write(path, args.overwrite.force || (args.resume && earlier)).map_err(message)
 }
 
 fn message(error: hence_workbook::problem::WorkbookError) -> Failure {

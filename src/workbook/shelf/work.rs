@@ -5,7 +5,7 @@ use std::path::Path;
 use hence_core::Catalogue;
 use serde::{Deserialize, Serialize};
 
-use super::{Record, record_of, sha256};
+use super::{Record, record_of, sha256, summary};
 use crate::fill::{FillRequest, fill};
 use crate::model::Workbook;
 use crate::older;
@@ -38,7 +38,7 @@ pub enum Done {
     Kept(Record),
     /// It was not filled, for what its record says.
     Failed(Record),
-    /// It is an output of hence, by the audit sheets in it.
+    /// It is an output of hence, by the audit sheets in it, or a summary.
     Audited,
 }
 
@@ -68,7 +68,8 @@ fn attempt(
     if same_file(input, output) {
         return Err(output_is_input(output));
     }
-    if order.found && Workbook::read(&package).is_ok_and(|book| !own_sheets(&book).is_empty()) {
+    let ours = |book: Workbook| !own_sheets(&book).is_empty() || summary::is_one(&book);
+    if order.found && Workbook::read(&package).is_ok_and(ours) {
         return Ok((Done::Audited, None));
     }
     let mut unknown = None;

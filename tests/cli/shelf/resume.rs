@@ -143,11 +143,36 @@ fn what_is_no_output_of_hence_is_not_replaced_as_a_damaged_one() {
 }
 
 #[test]
-fn only_a_ledger_is_replaced_as_a_ledger() {
+fn only_the_ledger_and_summary_of_the_run_are_replaced() {
     let shelf = done();
-    std::fs::write(shelf.path("ledger.jsonl"), "Dear Sir").unwrap();
-    let refused = shelf.fill("out", &[&ASKED[..], &["--resume"]].concat());
-    assert_eq!(code(&refused), 2);
-    assert!(stderr(&refused).contains("ledger.jsonl exists already"), "{}", stderr(&refused));
-    assert_eq!(std::fs::read(shelf.path("ledger.jsonl")).unwrap(), b"Dear Sir");
+    let (ledger, summary) = (shelf.path("ledger.jsonl"), shelf.path("summary.xlsx"));
+    let lines = std::fs::read_to_string(&ledger).unwrap();
+    let made = Package::open(&summary).unwrap();
+    let app = "docProps/app.xml";
+    let mut bytes = made.part(app).unwrap().unwrap();
+    bytes.extend(b"<!-- saved by another program -->");
+    let edited = Changes { replace: [(app.to_owned(), bytes)].into(), ..Changes::default() };
+    let edited = made.write(&edited).unwrap();
+    // A run over another shelf.
+    let other = Shelf::of(&["other.xlsx"]);
+    assert_eq!(code(&other.fill("out", &ASKED)), 0);
+    let others = |name: &str| std::fs::read(other.path(name)).unwrap();
+    for (path, text) in [
+        (&ledger, b"Dear Sir".to_vec()),
+        (&ledger, (lines.clone() + "my own note\n").into_bytes()),
+        (&ledger, others("ledger.jsonl")),
+        (&summary, edited),
+        (&summary, others("summary.xlsx")),
+        (&summary, lines.clone().into_bytes()),
+    ] {
+        let before = std::fs::read(path).unwrap();
+        std::fs::write(path, &text).unwrap();
+        let refused = shelf.fill("out", &[&ASKED[..], &["--resume"]].concat());
+        assert_eq!(code(&refused), 2);
+        let name = path.file_name().unwrap().to_str().unwrap();
+        assert!(stderr(&refused).contains(&format!("{name} exists already")), "{}", stderr(&refused));
+        assert!(std::fs::read(path).unwrap() == text);
+        std::fs::write(path, before).unwrap();
+    }
+    assert_eq!(code(&shelf.fill("out", &[&ASKED[..], &["--resume"]].concat())), 1, "theirs are replaced");
 }
