@@ -150,6 +150,11 @@ fn streams_carry_workbooks() {
         assert_eq!((code(&output), stdout(&output).len()), (2, 0), "{wrong:?}");
     }
     assert!(!Path::new("folder").exists());
+    let limited = run_with(&["fill", "-", "--memory-limit", "900", "--time-limit", "60"], book.bytes());
+    assert_eq!(limited.stdout, piped.stdout);
+    for flag in ["--memory-limit: not kept to", "--time-limit: not kept to"] {
+        assert!(stderr(&limited).contains(flag) && !stderr(&piped).contains(flag), "{}", stderr(&limited));
+    }
     let broken = run_with(&["fill", "-"], b"not a workbook");
     assert_eq!((code(&broken), broken.stdout.len()), (1, 0));
     assert!(stderr(&broken).contains("standard input"), "{}", stderr(&broken));

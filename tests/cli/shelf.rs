@@ -296,6 +296,30 @@ fn the_ledger_holds_the_hashes_of_what_went_in_and_came_out() {
 }
 
 #[test]
+fn a_ledger_or_summary_never_takes_the_place_of_what_the_run_reads() {
+    let shelf = Shelf::of(&["a.xlsx"]);
+    std::fs::write(shelf.path("plan.toml"), "[settings]\nbasis = \"3.5%\"\n").unwrap();
+    std::fs::create_dir(shelf.path("rules")).unwrap();
+    let house = "id = \"house\"\ntitle = \"House rules\"\nbody = \"Ostrey\"\nyear = 2026\nplace = \"1\"\naddress = \"\"\n\
+                 line = \"3%\"\nstatus = \"current\"\ncomplete = true\nchecked = \"an invented body\"\n";
+    std::fs::write(shelf.path("rules/house.toml"), house).unwrap();
+    let read = ["--plan", "plan.toml", "--schedules", "rules", "--force"];
+    for flag in ["--ledger", "--summary"] {
+        for path in ["plan.toml", "rules/house.toml", "rules/../plan.toml"] {
+            let refused = shelf.fill("out", &[&read[..], &[flag, path]].concat());
+            assert_eq!(code(&refused), 2, "{flag} {path}");
+            assert!(stderr(&refused).contains("this file is read by the run"), "{}", stderr(&refused));
+        }
+    }
+    let refused = shelf.fill("out", &["--ledger", "x", "--summary", "./x"]);
+    assert_eq!(code(&refused), 2);
+    assert!(stderr(&refused).contains("are one file"), "{}", stderr(&refused));
+    assert_eq!(shelf.names(""), ["plan.toml", "rules/house.toml", "shelf/a.xlsx"]);
+    assert_eq!(shelf.files("")["rules/house.toml"], house.as_bytes());
+    assert_eq!(code(&shelf.fill("out", &[&read[..], &["--ledger", "rules/x.jsonl"]].concat())), 0);
+}
+
+#[test]
 fn workbooks_of_two_folders_never_share_an_output() {
     let shelf = Shelf::of(&["a.xlsx", "b.xlsx"]);
     let fill = |args: &[&str]| hence().current_dir(shelf.path("")).arg("fill").args(args).output().unwrap();

@@ -6,7 +6,7 @@ use std::time::Duration;
 
 use hence_core::Catalogue;
 use hence_workbook::fill::{FillRequest, fill};
-use hence_workbook::package::{Identity, clear_abandoned, may_write, write_atomically};
+use hence_workbook::package::{Identity, clear_abandoned, may_write, same_file, write_atomically};
 use hence_workbook::problem::Result as BookResult;
 use hence_workbook::shelf::{Done, Order, Record, summary};
 
@@ -40,7 +40,22 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     }
     for (path, flag) in [(&args.ledger, LEDGER), (&args.summary, SUMMARY)] {
         if let Some(path) = path {
+            is_not_read(path, flag, args, schedules.as_deref())?;
             may_keep(path, flag, args, &all.inputs, &outputs)?;
+        }
+    }
+    let both = args.ledger.as_deref().zip(args.summary.as_deref());
+    if let Some((ledger, summary)) = both.filter(|(ledger, summary)| same_file(ledger, summary)) {
+        let (ledger, summary) = (ledger.display(), summary.display());
+        return Err(Failure::Message(format!("{LEDGER} {ledger} and {SUMMARY} {summary} are one file")));
+    }
+    let here = streams || all.inputs.iter().any(|input| input::is_dash(&input.path));
+    for (flag, given) in
+        [("--memory-limit", args.memory_limit.is_some()), ("--time-limit", args.time_limit.is_some())]
+    {
+        if here && given {
+            let how = "not kept to where a workbook comes from standard input or goes to standard output";
+            terminal.say("warning", &format!("{flag}: {how}"));
         }
     }
     if !limits::LIMITS_MEMORY && args.memory_limit.is_some() {
@@ -66,7 +81,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     };
     let mut telling = Telling::new(how, terminal, &shown, order.request.sha256(&catalogue));
     telling.ended = ended;
-    if streams || all.inputs.iter().any(|input| input::is_dash(&input.path)) {
+    if here {
         for (i, (input, output)) in all.inputs.iter().zip(&outputs).enumerate() {
             let (done, bytes) = fill_here(&input.path, output, &order, &catalogue);
             if let Some(bytes) = bytes {
@@ -145,6 +160,17 @@ fn tasks(inputs: &[Input], outputs: &[Output]) -> Vec<Task> {
         Output::Stream => None,
     };
     pairs.filter_map(task).collect()
+}
+
+/// Refused where a ledger or summary would take the place of a file that says how to fill.
+fn is_not_read(path: &Path, flag: &str, args: &Fill, schedules: Option<&Path>) -> Result<(), Failure> {
+    let folder = schedules.and_then(|folder| std::fs::read_dir(folder).ok());
+    let files = folder.into_iter().flatten().flatten().map(|entry| entry.path());
+    let schedules = files.filter(|file| file.extension().is_some_and(|extension| extension == "toml"));
+    if args.roles.plan.clone().into_iter().chain(schedules).any(|read| same_file(&read, path)) {
+        return Err(Failure::Message(format!("{flag} {}: this file is read by the run", path.display())));
+    }
+    Ok(())
 }
 
 /// Whether a ledger or summary may be written, before hours go into what it is to hold.
