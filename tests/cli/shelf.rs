@@ -183,6 +183,26 @@ fn what_is_no_input_is_passed_over_and_told() {
 
 #[cfg(unix)]
 #[test]
+fn what_has_no_end_is_not_waited_for() {
+    let shelf = Shelf::of(&["a.xlsx"]);
+    let made = Command::new("mkfifo").arg(shelf.path("shelf/pipe.xlsx")).status().expect("mkfifo runs");
+    assert!(made.success());
+    let output = shelf.fill("out", &["--time-limit", "60"]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    assert!(stderr(&output).contains("skipped (no ordinary file): shelf/pipe.xlsx"), "{}", stderr(&output));
+    assert_eq!(shelf.names("out"), ["a.audited.xlsx"]);
+    let output = shelf.fill("endless", &["--plan", "/dev/zero"]);
+    assert_eq!(code(&output), 2);
+    assert!(stderr(&output).contains("the plan is longer than 1048576 bytes"), "{}", stderr(&output));
+    std::fs::create_dir(shelf.path("rules")).unwrap();
+    std::os::unix::fs::symlink("/dev/zero", shelf.path("rules/house.toml")).unwrap();
+    let output = shelf.fill("endless", &["--schedules", "rules"]);
+    assert_eq!(code(&output), 2);
+    assert!(stderr(&output).contains("more than 1048576 bytes"), "{}", stderr(&output));
+}
+
+#[cfg(unix)]
+#[test]
 fn links_that_go_in_circles_end() {
     use std::os::unix::fs::symlink;
     let shelf = Shelf::of(&["a.xlsx", "sub/b.xlsx"]);
