@@ -276,6 +276,23 @@ fn a_bad_workbook_never_ends_the_run() {
     }
 }
 
+#[cfg(target_os = "linux")]
+#[test]
+fn want_of_memory_is_told_as_such() {
+    let shelf = Shelf::of(&["a.xlsx"]);
+    // More MB than a number of bytes can say is no limit.
+    let output = shelf.fill("out", &["--memory-limit", "17592186044416"]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    shelf.put("b.xlsx", b"");
+    let large = std::fs::File::options().write(true).open(shelf.path("shelf/b.xlsx")).unwrap();
+    large.set_len(127 << 20).unwrap();
+    let output = shelf.fill("new", &["--memory-limit", "120"]);
+    assert_eq!(code(&output), 1);
+    assert!(stderr(&output).contains("(memory-limit)"), "{}", stderr(&output));
+    assert!(!stderr(&output).contains("cannot-read"), "{}", stderr(&output));
+    assert_eq!(shelf.names("new"), ["a.audited.xlsx"]);
+}
+
 #[test]
 fn the_ledger_holds_the_hashes_of_what_went_in_and_came_out() {
     let shelf = Shelf::of(&["a.xlsx", "b.xlsx"]);

@@ -144,7 +144,7 @@ fn how_to_run(args: &Fill, order: Order, schedules: &Option<PathBuf>) -> Result<
         scratch,
         schedules: schedules.clone(),
         limits: Limits {
-            memory: args.memory_limit.unwrap_or(Limits::MEMORY_MB).get() << 20,
+            memory: args.memory_limit.unwrap_or(Limits::MEMORY_MB).get().saturating_mul(1 << 20),
             time: Duration::from_secs(args.time_limit.unwrap_or(Limits::TIME_SECONDS).get()),
         },
         jobs: jobs.unwrap_or(NonZeroUsize::MIN),
