@@ -4,7 +4,7 @@ use std::io::Read;
 use std::path::{Path, PathBuf};
 
 use hence_workbook::older::OldFormat;
-use hence_workbook::package::{MAX_FILE, Package};
+use hence_workbook::package::{Identity, MAX_FILE, Package};
 use hence_workbook::problem::{Place, Problem, Result};
 
 use crate::shelf::values::values;
@@ -24,6 +24,19 @@ pub struct Input {
 /// Whether a path stands for standard input or output.
 pub fn is_dash(path: &Path) -> bool {
     path.as_os_str() == DASH
+}
+
+/// What a workbook's path names; of standard input, the file that it was redirected from.
+pub fn identity(path: &Path) -> Identity {
+    #[cfg(unix)]
+    if is_dash(path) {
+        use std::os::fd::AsFd;
+        let own = std::io::stdin().as_fd().try_clone_to_owned().map(std::fs::File::from);
+        if let Ok(there) = own.and_then(|file| file.metadata()) {
+            return Identity::of_file(&there);
+        }
+    }
+    Identity::of(path)
 }
 
 /// A workbook's name in messages: as it was given.

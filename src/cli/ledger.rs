@@ -1,10 +1,10 @@
 //! The ledger of a run: a line of JSON for each workbook, with the hashes of what went in and what came out.
 
-use std::io::Read;
 use std::path::Path;
 
 use hence_workbook::shelf::Record;
 use serde::Serialize;
+use serde_json::Value;
 
 use crate::json::FilledBook;
 
@@ -61,9 +61,14 @@ pub fn line(record: &Record, book: &FilledBook) -> String {
     text
 }
 
-/// Whether a file is a ledger, or empty.
-pub fn is_one(path: &Path) -> bool {
-    let mut begin = Vec::new();
-    let read = std::fs::File::open(path).map(|file| file.take(BEGIN.len() as u64).read_to_end(&mut begin));
-    read.is_ok_and(|read| read.is_ok()) && (begin.is_empty() || begin == BEGIN.as_bytes())
+/// Whether a file is the ledger of a run over some of these inputs, or empty.
+pub fn is_of_run(path: &Path, inputs: &[&str]) -> bool {
+    let Ok(text) = std::fs::read_to_string(path) else { return false };
+    text.lines().all(|line| {
+        let line: Option<Value> = line.starts_with(BEGIN).then(|| serde_json::from_str(line).ok()).flatten();
+        line.is_some_and(|line| {
+            line["sha256"]["request"].is_string()
+                && line["input"].as_str().is_some_and(|input| inputs.contains(&input))
+        })
+    })
 }

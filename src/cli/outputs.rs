@@ -3,14 +3,15 @@
 use std::collections::BTreeMap;
 use std::ffi::OsStr;
 use std::io::{IsTerminal, Write};
-use std::path::{Path, PathBuf};
+use std::path::{Component, Path, PathBuf};
 
 use hence_workbook::older::OldFormat;
-use hence_workbook::package::{Identity, may_write, same_file};
-use hence_workbook::problem::{Place, Problem, Result as BookResult};
+use hence_workbook::package::{Identity, may_write};
+use hence_workbook::problem::Result as BookResult;
+use hence_workbook::shelf::output_is_input;
 
 use crate::Failure;
-use crate::input::{DASH, Input, is_dash};
+use crate::input::{self, DASH, Input, is_dash};
 use crate::shelf::walk::AUDITED;
 
 /// Where one output goes.
@@ -41,12 +42,16 @@ impl Output {
     /// Refused where it would be the input, which is never written, or an existing file without `--force`.
     pub fn may_write(&self, input: &Path, force: bool) -> BookResult<()> {
         let Output::File(path) = self else { return Ok(()) };
-        if !is_dash(input) && same_file(input, path) {
-            let message = format!("the output {} is the input, which is never written", path.display());
-            let problem = Problem::error("output-is-input", Place::default(), message);
-            return Err(problem.hint("give --out another name").into());
-        }
+        self.is_not(input)?;
         may_write(path, force)
+    }
+
+    /// Refused where it would be the input.
+    pub fn is_not(&self, input: &Path) -> BookResult<()> {
+        match self {
+            Output::File(path) if input::identity(input) == Identity::of(path) => Err(output_is_input(path)),
+            _ => Ok(()),
+        }
     }
 
     /// As it is shown.
@@ -153,11 +158,14 @@ pub fn outputs_for(inputs: &[Input], out: Option<&Path>) -> Result<Vec<Output>, 
     let mut outputs: Vec<Output> = Vec::new();
     let mut taken: BTreeMap<Option<Identity>, usize> = BTreeMap::new();
     let read: BTreeMap<Identity, usize> =
-        inputs.iter().enumerate().map(|(i, input)| (identity(&input.path), i)).collect();
+        inputs.iter().enumerate().map(|(i, input)| (cased(input::identity(&input.path)), i)).collect();
     for (i, input) in inputs.iter().enumerate() {
         let output = output_for(input, out, several)?;
         let place = match &output {
-            Output::File(path) => Some(identity(path)),
+            Output::File(path) => {
+                leads_nowhere(path)?;
+                Some(cased(Identity::of(path)))
+            }
             Output::Stream => None,
         };
         let clash = |j: usize, how: &str| {
@@ -177,9 +185,24 @@ pub fn outputs_for(inputs: &[Input], out: Option<&Path>) -> Result<Vec<Output>, 
     Ok(outputs)
 }
 
-/// What a path names. Where letters' case does not tell files apart, neither do two outputs that are not there yet.
-fn identity(path: &Path) -> Identity {
-    match Identity::of(path) {
+/// Refused where a `..` follows a folder that is not there: the folder would be made, and nothing come into it.
+fn leads_nowhere(path: &Path) -> Result<(), Failure> {
+    let mut before = PathBuf::new();
+    for part in path.components() {
+        if part == Component::ParentDir && !before.as_os_str().is_empty() && !before.is_dir() {
+            let (path, before) = (path.display(), before.display());
+            return Err(Failure::Message(format!(
+                "--out {path}: {before} is no folder, so that nothing can be above it\nTry: leave out {before} and the .. after it"
+            )));
+        }
+        before.push(part);
+    }
+    Ok(())
+}
+
+/// Where letters' case does not tell files apart, neither do two outputs that are not there yet.
+fn cased(identity: Identity) -> Identity {
+    match identity {
         Identity::Path(path) if cfg!(any(windows, target_os = "macos")) => {
             Identity::Path(path.to_string_lossy().to_lowercase().into())
         }

@@ -103,7 +103,7 @@ pub fn convert(name: &str, bytes: &[u8]) -> Result<Converted> {
         let message = format!("{name}, {}, cannot be read: {why}", format.words());
         Problem::error("damaged-file", Place::default(), message).hint(SAVE_AS).into()
     };
-    match format {
+    unbroken(&damaged, || match format {
         OldFormat::Xls => {
             let mut book = Xls::new(source).map_err(|e| damaged(&e))?;
             let names = names::unquoted(book.defined_names());
@@ -120,7 +120,17 @@ pub fn convert(name: &str, bytes: &[u8]) -> Result<Converted> {
             let mut book = Ods::new(source).map_err(|e| damaged(&e))?;
             carried(format, &mut book, names, &damaged)
         }
-    }
+    })
+}
+
+/// What reads the file, where a panic says that the reader did not expect what the file holds.
+fn unbroken<T>(
+    damaged: &dyn Fn(&dyn std::fmt::Display) -> WorkbookError,
+    read: impl FnOnce() -> Result<T>,
+) -> Result<T> {
+    // Nothing that the reader had is used after it.
+    std::panic::catch_unwind(std::panic::AssertUnwindSafe(read))
+        .unwrap_or_else(|_| Err(damaged(&"it holds what such a file never does")))
 }
 
 const SAVE_AS: &str = "save it as an Excel workbook (.xlsx) in a spreadsheet program";
@@ -183,4 +193,23 @@ where
         lost.push(format!("names that do not point to cells of one sheet: {}", unread.join(", ")));
     }
     Ok(Converted { bytes, lost })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::unbroken;
+    use crate::problem::{Place, Problem};
+
+    #[test]
+    fn a_reader_that_panics_met_a_damaged_file() {
+        let damaged = |why: &dyn std::fmt::Display| {
+            Problem::error("damaged-file", Place::default(), why.to_string()).into()
+        };
+        let broken = unbroken(&damaged, || {
+            let record: [u8; 2] = [1, 0];
+            Ok(record[usize::from(record[0]) + 1..usize::from(record[1])].len())
+        });
+        assert_eq!(broken.unwrap_err().problems()[0].code, "damaged-file");
+        assert_eq!(unbroken(&damaged, || Ok(2)).unwrap(), 2);
+    }
 }

@@ -9,6 +9,7 @@ use sha2::{Digest, Sha256};
 
 use crate::older::Converted;
 use crate::problem::{Place, Problem, Result, WorkbookError};
+use crate::shelf::mishap::refused_memory;
 
 mod container;
 mod edit;
@@ -112,6 +113,9 @@ impl Package {
     /// **Errors**: `cannot-read`.
     pub fn read(path: &Path) -> Result<Vec<u8>> {
         let failed = |e: std::io::Error| -> WorkbookError {
+            if e.kind() == std::io::ErrorKind::OutOfMemory {
+                return refused_memory("reading it").into();
+            }
             Problem::error("cannot-read", Place::default(), format!("{} cannot be read: {e}", path.display()))
                 .into()
         };

@@ -20,6 +20,7 @@ mod apply;
 mod parse;
 mod propose;
 
+use std::io::Read;
 use std::path::Path;
 
 use serde::{Deserialize, Serialize};
@@ -87,11 +88,14 @@ impl PlanFile {
     pub fn open(path: &Path) -> Result<Self> {
         let unreadable =
             |what: String| Problem::error("cannot-read", Place::default(), format!("the plan {what}"));
-        let size = std::fs::metadata(path).map_err(|e| unreadable(format!("cannot be read: {e}")))?.len();
-        if size > MAX_BYTES {
-            return Err(unreadable(format!("is {size} bytes long, allowed {MAX_BYTES}")).into());
+        let mut bytes = Vec::new();
+        // Of a file without an end, no more than shows that it is too long.
+        std::fs::File::open(path)
+            .and_then(|file| file.take(MAX_BYTES + 1).read_to_end(&mut bytes))
+            .map_err(|e| unreadable(format!("cannot be read: {e}")))?;
+        if bytes.len() as u64 > MAX_BYTES {
+            return Err(unreadable(format!("is longer than {MAX_BYTES} bytes, the most that is read")).into());
         }
-        let bytes = std::fs::read(path).map_err(|e| unreadable(format!("cannot be read: {e}")))?;
         let text = String::from_utf8(bytes).map_err(|_| {
             unreadable("is no text in UTF-8".to_owned()).hint("save it as plain text with the encoding UTF-8")
         })?;

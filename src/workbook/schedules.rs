@@ -1,5 +1,6 @@
 //! The schedules in force: the user's folder, read here since the library opens no file, then the built-in ones.
 
+use std::io::Read;
 use std::path::Path;
 
 use chrono::Datelike;
@@ -32,11 +33,14 @@ pub fn catalogue(folder: Option<&Path>) -> Result<Catalogue> {
             continue;
         }
         let name = path.file_name().unwrap_or_default().to_string_lossy().into_owned();
-        let size = std::fs::metadata(&path).map_err(|e| unreadable(&name, &e))?.len();
-        if size > MAX_SCHEDULE_BYTES {
-            return Err(unreadable(&name, &format!("{size} bytes, allowed {MAX_SCHEDULE_BYTES}")).into());
+        let mut bytes = Vec::new();
+        std::fs::File::open(&path)
+            .and_then(|file| file.take(MAX_SCHEDULE_BYTES + 1).read_to_end(&mut bytes))
+            .map_err(|e| unreadable(&name, &e))?;
+        if bytes.len() as u64 > MAX_SCHEDULE_BYTES {
+            return Err(unreadable(&name, &format!("more than {MAX_SCHEDULE_BYTES} bytes")).into());
         }
-        texts.push((name.clone(), std::fs::read_to_string(&path).map_err(|e| unreadable(&name, &e))?));
+        texts.push((name.clone(), String::from_utf8(bytes).map_err(|e| unreadable(&name, &e))?));
     }
     texts.sort();
     Catalogue::builtin().with(&texts).map_err(|e| crate::valuation::from_core(&e, Place::name(&shown)).into())

@@ -4,7 +4,7 @@
 
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
-use std::process::{Command, Stdio};
+use std::process::{Child, Command, Stdio};
 use std::time::{Duration, Instant};
 
 use crate::model::Workbook;
@@ -146,13 +146,17 @@ fn run(soffice: &Path, folder: &Path, book: &Path, output: &Path) -> Result<()> 
         .stdin(Stdio::null())
         .stdout(Stdio::null())
         .stderr(Stdio::null());
-    let mut child = command.spawn().map_err(|error| failed(&error))?;
+    let (mut child, watch) = watched(&mut command, folder).map_err(|error| failed(&error))?;
     let began = Instant::now();
     loop {
         match child.try_wait().map_err(|error| failed(&error))? {
-            Some(status) if status.success() => return Ok(()),
+            Some(status) if status.success() => {
+                watch.over();
+                return Ok(());
+            }
             Some(status) => return Err(failed(&format!("LibreOffice ended with {status}"))),
             None if began.elapsed() > PATIENCE => {
+                drop(watch);
                 let _ = child.kill();
                 let _ = child.wait();
                 return Err(failed(&format!("LibreOffice took longer than {} s", PATIENCE.as_secs())));
@@ -173,6 +177,66 @@ fn program(soffice: &Path) -> Command {
 #[cfg(not(unix))]
 fn program(soffice: &Path) -> Command {
     Command::new(soffice)
+}
+
+/// Starts the program in a group of its own, and what ends the group once this process goes, however it goes.
+fn watched(command: &mut Command, folder: &Path) -> std::io::Result<(Child, Watch)> {
+    #[cfg(unix)]
+    std::os::unix::process::CommandExt::process_group(command, 0);
+    let mut child = command.spawn()?;
+    match Watch::on(&child, folder) {
+        Ok(watch) => Ok((child, watch)),
+        Err(error) => {
+            let _ = child.kill();
+            let _ = child.wait();
+            Err(error)
+        }
+    }
+}
+
+/// A shell that reads from this process. Where it reads no word before the end, it ends the group of LibreOffice, which is
+/// several processes, and takes away the scratch folder.
+#[cfg(unix)]
+struct Watch(Child);
+
+#[cfg(unix)]
+impl Watch {
+    fn on(child: &Child, folder: &Path) -> std::io::Result<Self> {
+        let script = "read -r over && exit; kill -s KILL -- \"-$0\" 2>/dev/null; rm -rf -- \"$1\"";
+        let mut command = Command::new("/bin/sh");
+        // Whoever ends the group of this process does not end the shell.
+        std::os::unix::process::CommandExt::process_group(&mut command, 0);
+        command.args(["-c", script]).arg(child.id().to_string()).arg(folder);
+        command.stdin(Stdio::piped()).stdout(Stdio::null()).stderr(Stdio::null()).spawn().map(Watch)
+    }
+
+    /// LibreOffice has ended.
+    fn over(mut self) {
+        if let Some(to) = &mut self.0.stdin {
+            let _ = std::io::Write::write_all(to, b"over\n");
+        }
+    }
+}
+
+#[cfg(unix)]
+impl Drop for Watch {
+    fn drop(&mut self) {
+        drop(self.0.stdin.take());
+        let _ = self.0.wait();
+    }
+}
+
+/// Only the program itself is ended here, by who started it.
+#[cfg(not(unix))]
+struct Watch;
+
+#[cfg(not(unix))]
+impl Watch {
+    fn on(_child: &Child, _folder: &Path) -> std::io::Result<Self> {
+        Ok(Watch)
+    }
+
+    fn over(self) {}
 }
 
 fn failed(why: &dyn std::fmt::Display) -> WorkbookError {

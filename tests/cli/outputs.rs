@@ -3,7 +3,7 @@
 use std::path::Path;
 
 use crate::books::plan;
-use crate::{code, run, run_with, stderr, stdout};
+use crate::{code, hence, run, run_with, stderr, stdout};
 
 #[test]
 fn an_existing_output_needs_force() {
@@ -78,6 +78,44 @@ fn the_input_is_never_the_output() {
 }
 
 #[test]
+fn the_input_is_not_written_by_way_of_a_folder_that_is_not_there() {
+    let book = plan(&[]);
+    for name in ["nn/../plan.xlsx", "nn/../b.xlsx", "nn/.."] {
+        let output = run(&["fill", book.arg(), "--out", &book.beside_arg(name), "--force"]);
+        assert_eq!(code(&output), 2, "{name}");
+        assert!(stderr(&output).contains("nn is no folder"), "{}", stderr(&output));
+        assert_eq!(std::fs::read(&book.path).unwrap(), book.bytes(), "{name}");
+        book.is_clean(&[]);
+    }
+    // Another spelling of a folder that is there.
+    std::fs::create_dir(book.beside("there")).unwrap();
+    let output = run(&["fill", book.arg(), "--out", &book.beside_arg("there/../plan.xlsx"), "--force"]);
+    assert_eq!(code(&output), 2);
+    assert!(stderr(&output).contains("(output-is-input)"), "{}", stderr(&output));
+    let output = run(&["fill", book.arg(), "--out", &book.beside_arg("there/../b.xlsx")]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    book.is_clean(&["b.xlsx", "there"]);
+}
+
+#[cfg(unix)]
+#[test]
+fn a_file_that_comes_on_standard_input_is_not_the_output() {
+    let book = plan(&[]);
+    let fed = |args: &[&str]| {
+        let file = std::fs::File::open(&book.path).unwrap();
+        hence().args(args).stdin(file).output().unwrap()
+    };
+    let output = fed(&["fill", "-", "--out", book.arg(), "--force"]);
+    assert_eq!(code(&output), 2, "{}", stderr(&output));
+    assert!(stderr(&output).contains("(output-is-input)"), "{}", stderr(&output));
+    let ledger = fed(&["fill", "-", "--ledger", book.arg(), "--force"]);
+    assert_eq!(code(&ledger), 2, "{}", stderr(&ledger));
+    assert_eq!(std::fs::read(&book.path).unwrap(), book.bytes());
+    assert_eq!(code(&fed(&["fill", "-", "--out", &book.beside_arg("b.xlsx")])), 0);
+    book.is_clean(&["b.xlsx"]);
+}
+
+#[test]
 fn an_audited_copy_is_filled_only_to_another_name() {
     let book = plan(&[]);
     assert_eq!(code(&run(&["fill", book.arg()])), 0);
@@ -112,6 +150,11 @@ fn streams_carry_workbooks() {
         assert_eq!((code(&output), stdout(&output).len()), (2, 0), "{wrong:?}");
     }
     assert!(!Path::new("folder").exists());
+    let limited = run_with(&["fill", "-", "--memory-limit", "900", "--time-limit", "60"], book.bytes());
+    assert_eq!(limited.stdout, piped.stdout);
+    for flag in ["--memory-limit: not kept to", "--time-limit: not kept to"] {
+        assert!(stderr(&limited).contains(flag) && !stderr(&piped).contains(flag), "{}", stderr(&limited));
+    }
     let broken = run_with(&["fill", "-"], b"not a workbook");
     assert_eq!((code(&broken), broken.stdout.len()), (1, 0));
     assert!(stderr(&broken).contains("standard input"), "{}", stderr(&broken));

@@ -161,6 +161,8 @@ fn what_is_no_input_is_passed_over_and_told() {
     // An output under another name is known by the sheets in it.
     assert_eq!(code(&shelf.fill("first", &[])), 0);
     std::fs::copy(shelf.path("first/a.audited.xlsx"), shelf.path("shelf/renamed.xlsx")).unwrap();
+    // So is a summary.
+    assert_eq!(code(&shelf.fill("first", &["--force", "--summary", "shelf/summary.xlsx"])), 0);
     // Outputs lie in the folder that is walked.
     for _ in 0..2 {
         let output = shelf.fill("shelf/out", &["--force"]);
@@ -171,12 +173,32 @@ fn what_is_no_input_is_passed_over_and_told() {
             "skipped (a lock file of a spreadsheet program): shelf/~$a.xlsx",
             "skipped (hidden): shelf/.git, shelf/.hidden.xlsx",
             "skipped (an audited output): shelf/old.audited.xlsx",
-            "skipped (it holds audit sheets of hence): shelf/renamed.xlsx",
+            "skipped (it holds sheets made by hence): shelf/renamed.xlsx, shelf/summary.xlsx",
             "2 workbooks: 2 filled",
         ] {
             assert!(text.contains(part), "{part} is missing from:\n{text}");
         }
     }
+}
+
+#[cfg(unix)]
+#[test]
+fn what_has_no_end_is_not_waited_for() {
+    let shelf = Shelf::of(&["a.xlsx"]);
+    let made = Command::new("mkfifo").arg(shelf.path("shelf/pipe.xlsx")).status().expect("mkfifo runs");
+    assert!(made.success());
+    let output = shelf.fill("out", &["--time-limit", "60"]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    assert!(stderr(&output).contains("skipped (no ordinary file): shelf/pipe.xlsx"), "{}", stderr(&output));
+    assert_eq!(shelf.names("out"), ["a.audited.xlsx"]);
+    let output = shelf.fill("endless", &["--plan", "/dev/zero"]);
+    assert_eq!(code(&output), 2);
+    assert!(stderr(&output).contains("the plan is longer than 1048576 bytes"), "{}", stderr(&output));
+    std::fs::create_dir(shelf.path("rules")).unwrap();
+    std::os::unix::fs::symlink("/dev/zero", shelf.path("rules/house.toml")).unwrap();
+    let output = shelf.fill("endless", &["--schedules", "rules"]);
+    assert_eq!(code(&output), 2);
+    assert!(stderr(&output).contains("more than 1048576 bytes"), "{}", stderr(&output));
 }
 
 #[cfg(unix)]
@@ -254,6 +276,23 @@ fn a_bad_workbook_never_ends_the_run() {
     }
 }
 
+#[cfg(target_os = "linux")]
+#[test]
+fn want_of_memory_is_told_as_such() {
+    let shelf = Shelf::of(&["a.xlsx"]);
+    // More MB than a number of bytes can say is no limit.
+    let output = shelf.fill("out", &["--memory-limit", "17592186044416"]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    shelf.put("b.xlsx", b"");
+    let large = std::fs::File::options().write(true).open(shelf.path("shelf/b.xlsx")).unwrap();
+    large.set_len(127 << 20).unwrap();
+    let output = shelf.fill("new", &["--memory-limit", "120"]);
+    assert_eq!(code(&output), 1);
+    assert!(stderr(&output).contains("(memory-limit)"), "{}", stderr(&output));
+    assert!(!stderr(&output).contains("cannot-read"), "{}", stderr(&output));
+    assert_eq!(shelf.names("new"), ["a.audited.xlsx"]);
+}
+
 #[test]
 fn the_ledger_holds_the_hashes_of_what_went_in_and_came_out() {
     let shelf = Shelf::of(&["a.xlsx", "b.xlsx"]);
@@ -291,6 +330,30 @@ fn the_ledger_holds_the_hashes_of_what_went_in_and_came_out() {
         assert_eq!(std::fs::read(shelf.path(path)).ok(), before, "{path}");
         assert!(!shelf.path("o").exists(), "nothing is filled where the ledger cannot be kept");
     }
+}
+
+#[test]
+fn a_ledger_or_summary_never_takes_the_place_of_what_the_run_reads() {
+    let shelf = Shelf::of(&["a.xlsx"]);
+    std::fs::write(shelf.path("plan.toml"), "[settings]\nbasis = \"3.5%\"\n").unwrap();
+    std::fs::create_dir(shelf.path("rules")).unwrap();
+    let house = "id = \"house\"\ntitle = \"House rules\"\nbody = \"Ostrey\"\nyear = 2026\nplace = \"1\"\naddress = \"\"\n\
+                 line = \"3%\"\nstatus = \"current\"\ncomplete = true\nchecked = \"an invented body\"\n";
+    std::fs::write(shelf.path("rules/house.toml"), house).unwrap();
+    let read = ["--plan", "plan.toml", "--schedules", "rules", "--force"];
+    for flag in ["--ledger", "--summary"] {
+        for path in ["plan.toml", "rules/house.toml", "rules/../plan.toml"] {
+            let refused = shelf.fill("out", &[&read[..], &[flag, path]].concat());
+            assert_eq!(code(&refused), 2, "{flag} {path}");
+            assert!(stderr(&refused).contains("this file is read by the run"), "{}", stderr(&refused));
+        }
+    }
+    let refused = shelf.fill("out", &["--ledger", "x", "--summary", "./x"]);
+    assert_eq!(code(&refused), 2);
+    assert!(stderr(&refused).contains("are one file"), "{}", stderr(&refused));
+    assert_eq!(shelf.names(""), ["plan.toml", "rules/house.toml", "shelf/a.xlsx"]);
+    assert_eq!(shelf.files("")["rules/house.toml"], house.as_bytes());
+    assert_eq!(code(&shelf.fill("out", &[&read[..], &["--ledger", "rules/x.jsonl"]].concat())), 0);
 }
 
 #[test]

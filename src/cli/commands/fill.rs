@@ -6,7 +6,7 @@ use std::time::Duration;
 
 use hence_core::Catalogue;
 use hence_workbook::fill::{FillRequest, fill};
-use hence_workbook::package::{Identity, clear_abandoned, may_write, write_atomically};
+use hence_workbook::package::{Identity, clear_abandoned, may_write, same_file, write_atomically};
 use hence_workbook::problem::Result as BookResult;
 use hence_workbook::shelf::{Done, Order, Record, summary};
 
@@ -23,6 +23,9 @@ use crate::shelf::worker::{Limits, Task};
 use crate::terminal::{self, Terminal};
 use crate::{Failure, Outcome, ledger, limits};
 
+const LEDGER: &str = "--ledger";
+const SUMMARY: &str = "--summary";
+
 /// Fills every workbook; one that fails does not keep the others from being filled.
 pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Result<Outcome, Failure> {
     let catalogue = super::catalogue(schedules)?;
@@ -36,9 +39,24 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
             "--json and a workbook both want standard output\nTry: --out with a file".into(),
         ));
     }
-    for (path, flag) in [(&args.ledger, "--ledger"), (&args.summary, "--summary")] {
+    for (path, flag) in [(&args.ledger, LEDGER), (&args.summary, SUMMARY)] {
         if let Some(path) = path {
+            is_not_read(path, flag, args, schedules.as_deref())?;
             may_keep(path, flag, args, &all.inputs, &outputs)?;
+        }
+    }
+    let both = args.ledger.as_deref().zip(args.summary.as_deref());
+    if let Some((ledger, summary)) = both.filter(|(ledger, summary)| same_file(ledger, summary)) {
+        let (ledger, summary) = (ledger.display(), summary.display());
+        return Err(Failure::Message(format!("{LEDGER} {ledger} and {SUMMARY} {summary} are one file")));
+    }
+    let here = streams || all.inputs.iter().any(|input| input::is_dash(&input.path));
+    for (flag, given) in
+        [("--memory-limit", args.memory_limit.is_some()), ("--time-limit", args.time_limit.is_some())]
+    {
+        if here && given {
+            let how = "not kept to where a workbook comes from standard input or goes to standard output";
+            terminal.say("warning", &format!("{flag}: {how}"));
         }
     }
     if !limits::LIMITS_MEMORY && args.memory_limit.is_some() {
@@ -64,7 +82,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     };
     let mut telling = Telling::new(how, terminal, &shown, order.request.sha256(&catalogue));
     telling.ended = ended;
-    if streams || all.inputs.iter().any(|input| input::is_dash(&input.path)) {
+    if here {
         for (i, (input, output)) in all.inputs.iter().zip(&outputs).enumerate() {
             let (done, bytes) = fill_here(&input.path, output, &order, &catalogue);
             if let Some(bytes) = bytes {
@@ -88,7 +106,7 @@ pub fn run(args: &Fill, schedules: &Option<PathBuf>, terminal: &Terminal) -> Res
     let audited: Vec<(PathBuf, &str)> = telling
         .audited
         .iter()
-        .map(|i| (all.inputs[*i].path.clone(), "it holds audit sheets of hence"))
+        .map(|i| (all.inputs[*i].path.clone(), "it holds sheets made by hence"))
         .collect();
     for line in skipped_words(&audited) {
         terminal.say("note", &line);
@@ -127,7 +145,7 @@ fn how_to_run(args: &Fill, order: Order, schedules: &Option<PathBuf>) -> Result<
         scratch,
         schedules: schedules.clone(),
         limits: Limits {
-            memory: args.memory_limit.unwrap_or(Limits::MEMORY_MB).get() << 20,
+            memory: args.memory_limit.unwrap_or(Limits::MEMORY_MB).get().saturating_mul(1 << 20),
             time: Duration::from_secs(args.time_limit.unwrap_or(Limits::TIME_SECONDS).get()),
         },
         jobs: jobs.unwrap_or(NonZeroUsize::MIN),
@@ -145,6 +163,17 @@ fn tasks(inputs: &[Input], outputs: &[Output]) -> Vec<Task> {
     pairs.filter_map(task).collect()
 }
 
+/// Refused where a ledger or summary would take the place of a file that says how to fill.
+fn is_not_read(path: &Path, flag: &str, args: &Fill, schedules: Option<&Path>) -> Result<(), Failure> {
+    let folder = schedules.and_then(|folder| std::fs::read_dir(folder).ok());
+    let files = folder.into_iter().flatten().flatten().map(|entry| entry.path());
+    let schedules = files.filter(|file| file.extension().is_some_and(|extension| extension == "toml"));
+    if args.roles.plan.clone().into_iter().chain(schedules).any(|read| same_file(&read, path)) {
+        return Err(Failure::Message(format!("{flag} {}: this file is read by the run", path.display())));
+    }
+    Ok(())
+}
+
 /// Whether a ledger or summary may be written, before hours go into what it is to hold.
 fn may_keep(
     path: &Path,
@@ -155,11 +184,14 @@ fn may_keep(
 ) -> Result<(), Failure> {
     let own = Identity::of(path);
     let output = |output: &Output| matches!(output, Output::File(path) if Identity::of(path) == own);
-    if inputs.iter().any(|input| Identity::of(&input.path) == own) || outputs.iter().any(output) {
+    if inputs.iter().any(|input| input::identity(&input.path) == own) || outputs.iter().any(output) {
         return Err(Failure::Message(format!("{flag} {}: this is one of the workbooks", path.display())));
     }
-    let continued = args.resume && (ledger::is_one(path) || summary::is_one(path));
-    may_write(path, args.overwrite.force || continued).map_err(message)
+    let shown: Vec<String> = inputs.iter().map(|input| input::shown(&input.path)).collect();
+    let shown: Vec<&str> = shown.iter().map(String::as_str).collect();
+    let earlier = path.is_file()
+        && if flag == LEDGER { ledger::is_of_run(path, &shown) } else { summary::is_of_run(path, &shown) };
+    may_write(path, args.overwrite.force || (args.resume && earlier)).map_err(message)
 }
 
 fn message(error: hence_workbook::problem::WorkbookError) -> Failure {
@@ -186,7 +218,8 @@ fn fill_here(
     order: &Order,
     catalogue: &Catalogue,
 ) -> (BookResult<Done>, Option<Vec<u8>>) {
-    let filled = input::open(book).and_then(|package| fill(&package, &order.request, catalogue));
+    let filled = output.is_not(book).and_then(|()| input::open(book));
+    let filled = filled.and_then(|package| fill(&package, &order.request, catalogue));
     let filled = filled.and_then(|filled| {
         if let Output::File(path) = output {
             write_atomically(path, &filled.bytes, order.force)?;

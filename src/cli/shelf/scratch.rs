@@ -3,6 +3,7 @@
 use std::fs::File;
 use std::io;
 use std::path::Path;
+use std::time::Duration;
 
 use tempfile::TempDir;
 
@@ -31,6 +32,18 @@ impl Scratch {
     /// Where it is.
     pub fn path(&self) -> &Path {
         self.folder.path()
+    }
+}
+
+impl Drop for Scratch {
+    fn drop(&mut self) {
+        // What a killed process had started may write here until it is ended, too.
+        for _ in 0..100 {
+            if std::fs::remove_dir_all(self.path()).is_ok() || !self.path().exists() {
+                break;
+            }
+            std::thread::sleep(Duration::from_millis(20));
+        }
     }
 }
 

@@ -81,6 +81,9 @@ fn folder(root: &Path, inside: &Path, to: For, seen: &mut BTreeSet<PathBuf>, fou
                 found.skipped.push((path, "hidden"));
             } else if matches!(to, For::Filling(_)) && stem.ends_with(AUDITED) {
                 found.skipped.push((path, "an audited output"));
+            } else if full.metadata().is_ok_and(|there| !there.is_file()) {
+                // One that waits for a writer would never end.
+                found.skipped.push((path, "no ordinary file"));
             } else {
                 found.books.push(path);
             }

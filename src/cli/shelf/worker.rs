@@ -10,9 +10,9 @@ use std::sync::{Mutex, MutexGuard, PoisonError};
 use std::thread::JoinHandle;
 use std::time::{Duration, Instant};
 
-use hence_workbook::package::Pending;
+use hence_workbook::package::{Pending, same_file};
 use hence_workbook::problem::{Problem, WorkbookError};
-use hence_workbook::shelf::{Done, Order, mishap};
+use hence_workbook::shelf::{Done, Order, mishap, output_is_input};
 
 use super::pool::Run;
 use super::scratch::Scratch;
@@ -146,8 +146,14 @@ pub fn work(task: &Task, run: &Run, slot: &Slot, stop: &AtomicBool) -> Result<Do
     match received {
         Some(Err(Broken::Output(error))) => Err(error),
         Some(Ok((done, pending))) if status.is_some_and(|status| status.success()) => {
-            // An earlier output of hence was looked at by the process: it may be replaced.
-            pending.map_or(Ok(()), |pending| pending.commit(order.force || order.resume))?;
+            if let Some(pending) = pending {
+                // Folders may have come to be since the process compared the two.
+                if same_file(&task.input, &task.output) {
+                    return Err(output_is_input(&task.output));
+                }
+                // An earlier output of hence was looked at by the process: it may be replaced.
+                pending.commit(order.force || order.resume)?;
+            }
             Ok(done)
         }
         _ if late => Err(mishap::out_of_time(limits.time).into()),
@@ -243,7 +249,39 @@ pub(super) fn why(status: Option<ExitStatus>, words: &str, limits: &Limits) -> P
     }
     let ended = status.map_or_else(|| "its end is not known".to_owned(), |status| status.to_string());
     // A panic's place, then its words.
-    let said: Vec<&str> = words.lines().map(str::trim).filter(|line| !line.is_empty()).take(2).collect();
+    let said: Vec<String> =
+        words.lines().map(str::trim).filter(|line| !line.is_empty()).take(2).map(without_folders).collect();
     let said = if said.is_empty() { String::new() } else { format!("; {}", said.join(" ")) };
     mishap::broke_off(&format!("{ended}{said}"))
+}
+
+/// A line that says where a panic was, without the folders of the machine on which hence was built.
+fn without_folders(line: &str) -> String {
+    let Some((before, place)) = line.split_once("panicked at ") else { return line.to_owned() };
+    let place = place.replace('\\', "/");
+    let relative = !place.starts_with('/') && !place.contains(":/");
+    // Of a library's file, the library's folder stays.
+    let end = place.rfind("/src/").unwrap_or(place.len());
+    let begin = if relative { 0 } else { place[..end].rfind('/').map_or(0, |slash| slash + 1) };
+    format!("{before}panicked at {}", &place[begin..])
+}
+
+#[cfg(test)]
+mod tests {
+    use super::without_folders;
+
+    #[test]
+    fn a_panic_says_no_folders_of_a_machine() {
+        for (place, due) in [
+            ("src/cli/shelf/child.rs:80:25:", "src/cli/shelf/child.rs:80:25:"),
+            ("/home/ostrey/reader-0.26.1/src/xls.rs:9:1:", "reader-0.26.1/src/xls.rs:9:1:"),
+            ("C:\\Users\\ostrey\\reader-0.26.1\\src\\xls.rs:9:1:", "reader-0.26.1/src/xls.rs:9:1:"),
+            ("/home/ostrey/target/out/made.rs:3:1:", "made.rs:3:1:"),
+            ("/rustc/0ab/library/core/src/slice.rs:1:2:", "core/src/slice.rs:1:2:"),
+        ] {
+            let line = without_folders(&format!("thread 'main' panicked at {place}"));
+            assert_eq!(line, format!("thread 'main' panicked at {due}"));
+        }
+        assert_eq!(without_folders("as the test wants"), "as the test wants");
+    }
 }

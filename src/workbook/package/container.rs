@@ -10,6 +10,7 @@ use std::ops::Range;
 use flate2::bufread::DeflateDecoder;
 
 use crate::problem::{Place, Problem, Result};
+use crate::shelf::mishap::refused_memory;
 
 /// The largest file that is opened, in bytes: it is held in memory whole, and a million cells take 10 MB.
 pub const MAX_FILE: u64 = 128 << 20;
@@ -75,14 +76,17 @@ impl Entry {
         let mut bytes = Vec::new();
         bytes
             .try_reserve_exact(self.size as usize)
-            .map_err(|e| self.unreadable(&std::io::Error::other(e)))?;
+            .map_err(|_| self.unreadable(&std::io::ErrorKind::OutOfMemory.into()))?;
         self.reader(file)?.read_to_end(&mut bytes).map_err(|e| self.unreadable(&e))?;
         Ok(bytes)
     }
 
-    /// The error for bytes that do not inflate as stated.
+    /// The error for bytes that do not inflate as stated, or for which there is no memory.
     pub(super) fn unreadable(&self, error: &std::io::Error) -> crate::problem::WorkbookError {
-        damaged(format!("{} cannot be read: {error}", self.name))
+        match error.kind() {
+            std::io::ErrorKind::OutOfMemory => refused_memory(&self.name).into(),
+            _ => damaged(format!("{} cannot be read: {error}", self.name)),
+        }
     }
 }
 
@@ -400,4 +404,30 @@ pub(super) fn moved_record(record: &[u8], offset: u32) -> Vec<u8> {
         at += 4 + length as usize;
     }
     record
+}
+
+#[cfg(test)]
+mod tests {
+    use super::Entry;
+    use std::io::{Error, ErrorKind};
+
+    #[test]
+    fn want_of_memory_is_no_damage() {
+        let nothing = || 0..0;
+        let entry = Entry {
+            name: "xl/workbook.xml".into(),
+            part: "xl/workbook.xml".into(),
+            method: 0,
+            crc: 0,
+            size: 0,
+            local: nothing(),
+            data: nothing(),
+            record: nothing(),
+        };
+        for (kind, code) in
+            [(ErrorKind::OutOfMemory, "memory-limit"), (ErrorKind::InvalidData, "damaged-zip")]
+        {
+            assert_eq!(entry.unreadable(&Error::from(kind)).problems()[0].code, code);
+        }
+    }
 }

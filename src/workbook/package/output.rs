@@ -323,8 +323,8 @@ fn folder_of(path: &Path) -> PathBuf {
     }
 }
 
-/// What a path names, whatever links, case or ways of writing lead there. A path that is not there yet goes by its
-/// folder and name; one whose folder is not there, by how it is written.
+/// What a path names, whatever links, case or ways of writing lead there. A path that is not there yet goes by the place
+/// at which it would come to be.
 #[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord)]
 pub enum Identity {
     /// A file of the system, by device and number.
@@ -336,16 +336,38 @@ pub enum Identity {
 impl Identity {
     /// That of a path.
     pub fn of(path: &Path) -> Self {
+        let real = real(path);
         #[cfg(unix)]
-        {
-            use std::os::unix::fs::MetadataExt;
-            if let Ok(there) = path.metadata() {
-                return Identity::File(there.dev(), there.ino());
-            }
+        if let Ok(there) = real.metadata() {
+            return Identity::of_file(&there);
         }
-        let in_folder = || Some(folder_of(path).canonicalize().ok()?.join(path.file_name()?));
-        Identity::Path(path.canonicalize().ok().or_else(in_folder).unwrap_or_else(|| path.to_owned()))
+        Identity::Path(real)
     }
+
+    /// That of a file that is open or was looked at.
+    #[cfg(unix)]
+    pub fn of_file(there: &std::fs::Metadata) -> Self {
+        use std::os::unix::fs::MetadataExt;
+        Identity::File(there.dev(), there.ino())
+    }
+}
+
+/// The real path: what is there as the system sees it, what is not there yet as it would be made, so that a `..` after it
+/// leads back.
+fn real(path: &Path) -> PathBuf {
+    if let Ok(real) = path.canonicalize() {
+        return real;
+    }
+    let mut real = PathBuf::new();
+    for part in std::path::absolute(path).unwrap_or_else(|_| path.to_owned()).components() {
+        if part == std::path::Component::ParentDir {
+            real.pop();
+        } else {
+            real.push(part);
+            real = real.canonicalize().unwrap_or(real);
+        }
+    }
+    real
 }
 
 /// Whether two paths name one file.

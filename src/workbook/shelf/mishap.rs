@@ -11,6 +11,13 @@ pub fn out_of_memory(limit: u64) -> Problem {
         .hint("--memory-limit with more, or split the workbook")
 }
 
+/// The system refused memory for a part or file; the limit is not known where that is seen.
+pub(crate) fn refused_memory(what: &str) -> Problem {
+    let message = format!("{what} takes more memory than there is");
+    Problem::error("memory-limit", Place::default(), message)
+        .hint("--memory-limit with more, or split the workbook")
+}
+
 /// It took longer than it may.
 pub fn out_of_time(limit: Duration) -> Problem {
     let message = format!("reading and filling it takes more than {} seconds", limit.as_secs());

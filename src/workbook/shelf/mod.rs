@@ -13,7 +13,6 @@ mod work;
 pub use crate::package::sha256;
 pub use record::Record;
 pub use seal::record_of;
-pub use work::{Done, EXTENSIONS, Order, work};
+pub use work::{Done, EXTENSIONS, Order, output_is_input, work};
 
 pub(crate) use seal::{part as record_part, prepare, sealed};
-pub(crate) use work::output_is_input;

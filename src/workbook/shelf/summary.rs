@@ -12,6 +12,7 @@ use crate::writer::{self, Sheet, Style};
 
 use super::Record;
 use super::flips::flips;
+use super::seal::{inputs_of_summary, sealed_summary};
 
 mod bridge;
 mod movers;
@@ -51,7 +52,8 @@ pub fn write(records: &[Record], place: &Path) -> Result<Vec<u8>> {
         Severity::Warning,
     ));
     sheets.extend(awaiting(records));
-    writer::workbook(&sheets, &[])
+    let inputs = records.iter().map(|record| record.input.clone()).collect();
+    sealed_summary(writer::workbook(&sheets, &[])?, inputs)
 }
 
 /// Formulas that show nothing until a spreadsheet program opens the output; no sheet where there are none.
@@ -74,13 +76,17 @@ fn awaiting(records: &[Record]) -> Option<Sheet> {
     (row > 3).then_some(sheet)
 }
 
-/// Whether a file is such a summary.
-pub fn is_one(path: &Path) -> bool {
-    let Ok(package) = Package::open(path) else { return false };
-    Workbook::read(&package).is_ok_and(|book| {
-        let names: Vec<&str> = book.sheets.iter().map(|sheet| sheet.name.as_str()).collect();
-        names.starts_with(&[SUMMARY, BRIDGE]) && names.contains(&FAILURES) && names.contains(&WARNINGS)
-    })
+/// Whether a file is a summary as hence left it, of a run over some of these inputs.
+pub fn is_of_run(path: &Path, inputs: &[&str]) -> bool {
+    let package = Package::read(path).and_then(|bytes| Package::from_bytes("summary", bytes));
+    let own = package.ok().and_then(|package| inputs_of_summary(&package));
+    own.is_some_and(|own| own.iter().all(|input| inputs.contains(&input.as_str())))
+}
+
+/// Whether a workbook is a summary, touched since or not: one has these sheets.
+pub(super) fn is_one(book: &Workbook) -> bool {
+    let names: Vec<&str> = book.sheets.iter().map(|sheet| sheet.name.as_str()).collect();
+    names.starts_with(&[SUMMARY, BRIDGE]) && names.contains(&FAILURES) && names.contains(&WARNINGS)
 }
 
 fn summary(records: &[Record]) -> Sheet {

@@ -5,7 +5,7 @@ use std::path::Path;
 use hence_core::Catalogue;
 use serde::{Deserialize, Serialize};
 
-use super::{Record, record_of, sha256};
+use super::{Record, record_of, sha256, summary};
 use crate::fill::{FillRequest, fill};
 use crate::model::Workbook;
 use crate::older;
@@ -38,7 +38,7 @@ pub enum Done {
     Kept(Record),
     /// It was not filled, for what its record says.
     Failed(Record),
-    /// It is an output of hence, by the audit sheets in it.
+    /// It is an output of hence, by the audit sheets in it, or a summary.
     Audited,
 }
 
@@ -68,26 +68,33 @@ fn attempt(
     if same_file(input, output) {
         return Err(output_is_input(output));
     }
-    if order.found && Workbook::read(&package).is_ok_and(|book| !own_sheets(&book).is_empty()) {
+    let ours = |book: Workbook| !own_sheets(&book).is_empty() || summary::is_one(&book);
+    if order.found && Workbook::read(&package).is_ok_and(ours) {
         return Ok((Done::Audited, None));
     }
+    let mut unknown = None;
     if order.resume && output.symlink_metadata().is_ok() {
         may_replace(output, true)?;
         let wanted = Wanted { input: package.file_name(), input_sha256: &hash, order, catalogue };
-        if let Some(record) = kept(output, &wanted)? {
-            return Ok((Done::Kept(record), None));
+        match earlier(output, &wanted)? {
+            Earlier::Done(record) => return Ok((Done::Kept(record), None)),
+            Earlier::Outdated => {}
+            Earlier::Unknown(bytes) => unknown = Some(bytes).filter(|_| !order.force),
         }
     } else {
         may_replace(output, order.force)?;
     }
     let filled = fill(&package, &order.request, catalogue)?;
+    if unknown.is_some_and(|bytes| !filled.bytes.starts_with(&bytes)) {
+        return Err(changed(output));
+    }
     let mut record = Record::filled(&filled.meta, &filled.report);
     record.output_sha256 = Some(sha256(&filled.bytes));
     Ok((Done::Filled(record), Some(filled.bytes)))
 }
 
 /// That the output would be the input.
-pub(crate) fn output_is_input(output: &Path) -> WorkbookError {
+pub fn output_is_input(output: &Path) -> WorkbookError {
     let message = format!("the output {} is the input, which is never written", output.display());
     Problem::error("output-is-input", Place::default(), message).hint("give --out another name").into()
 }
@@ -108,22 +115,29 @@ impl Wanted<'_> {
     }
 }
 
-/// The record of an output that need not be made again. One that may be replaced has none: made by hence from something
-/// else and not touched since, or damaged.
-///
-/// **Errors**: `output-changed` where another program saved it, since what a person did there would be lost.
-fn kept(output: &Path, wanted: &Wanted<'_>) -> Result<Option<Record>> {
-    let Ok(there) = Package::from_bytes("output", Package::read(output)?) else { return Ok(None) };
-    if let Some(record) = record_of(&there) {
-        let output_sha256 = Some(sha256(there.bytes()));
-        return Ok(wanted.is(&record).then_some(Record { output_sha256, ..record }));
-    }
-    let whole = there.parts().all(|part| there.part(part).is_ok());
-    if whole && !wanted.order.force {
-        let message = format!("{} is not as hence left it, or was not made by hence", output.display());
-        return Err(Problem::error("output-changed", Place::default(), message)
-            .hint("move it away, or replace it with --force")
-            .into());
-    }
-    Ok(None)
+/// What stands at the place of an output.
+enum Earlier {
+    /// What this run would make.
+    Done(Record),
+    /// What hence made from something else, not touched since.
+    Outdated,
+    /// Something else, with its bytes: it may be replaced where it is the beginning of the output, cut short, and else
+    /// not, since what a person or another program did there would be lost.
+    Unknown(Vec<u8>),
+}
+
+fn earlier(output: &Path, wanted: &Wanted<'_>) -> Result<Earlier> {
+    let bytes = Package::read(output)?;
+    let Ok(there) = Package::from_bytes("output", bytes.clone()) else { return Ok(Earlier::Unknown(bytes)) };
+    let Some(record) = record_of(&there) else { return Ok(Earlier::Unknown(bytes)) };
+    let output_sha256 = Some(sha256(&bytes));
+    Ok(if wanted.is(&record) { Earlier::Done(Record { output_sha256, ..record }) } else { Earlier::Outdated })
+}
+
+/// That another program saved an output.
+fn changed(output: &Path) -> WorkbookError {
+    let message = format!("{} is not as hence left it, or was not made by hence", output.display());
+    Problem::error("output-changed", Place::default(), message)
+        .hint("move it away, or replace it with --force")
+        .into()
 }

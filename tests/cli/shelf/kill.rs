@@ -196,3 +196,36 @@ fn what_a_process_has_started_ends_with_it() {
         assert_eq!(shelf.names("aside"), Vec::<String>::new(), "nothing is left aside");
     }
 }
+
+/// Nor does it outlive one that works in its own process, since a workbook goes to standard output.
+#[test]
+fn what_a_run_to_standard_output_has_started_ends_with_it() {
+    if hence_workbook::settle::soffice().is_none() {
+        assert!(std::env::var_os("HENCE_REQUIRE_TOOLS").is_none(), "LibreOffice (soffice) is not installed");
+        eprintln!("not run: LibreOffice (soffice) is not installed");
+        return;
+    }
+    for by in [TERM, KILL] {
+        let shelf = Shelf::empty();
+        shelf.put("a.xlsx", crate::books::plan(&[("B60", "=B34*2>")]).bytes());
+        let aside = shelf.path("aside");
+        std::fs::create_dir(&aside).unwrap();
+        let mut command = crate::hence();
+        command.arg("fill").arg(shelf.path("shelf/a.xlsx")).args(["--out", "-", "--settle"]);
+        command.env("TMPDIR", &aside).stdout(Stdio::piped()).stderr(Stdio::piped());
+        let child = command.spawn().unwrap();
+        let since = Instant::now();
+        while !at_work(&aside).iter().any(|text| text.contains("soffice.bin")) {
+            assert!(since.elapsed() < Duration::from_secs(120), "LibreOffice is started");
+            std::thread::sleep(Duration::from_millis(5));
+        }
+        signal(&child, by);
+        assert_eq!(child.wait_with_output().unwrap().status.signal(), Some(by));
+        none_is_left(&aside);
+        let since = Instant::now();
+        while !shelf.names("aside").is_empty() {
+            assert!(since.elapsed() < Duration::from_secs(20), "left aside: {:?}", shelf.names("aside"));
+            std::thread::sleep(Duration::from_millis(5));
+        }
+    }
+}

@@ -5,7 +5,7 @@ use std::time::SystemTime;
 
 use hence_workbook::package::{Changes, Package};
 
-use super::{Shelf, workbook};
+use super::{Shelf, password_protected, workbook};
 use crate::{code, stderr, stdout};
 
 const NAMES: [&str; 6] = ["a.xlsx", "b.xlsx", "c.xlsx", "d.xlsx", "sub/e.xlsx", "text.xlsx"];
@@ -109,11 +109,70 @@ fn what_a_person_did_to_an_output_is_not_lost() {
 }
 
 #[test]
-fn only_a_ledger_is_replaced_as_a_ledger() {
+fn what_is_no_output_of_hence_is_not_replaced_as_a_damaged_one() {
     let shelf = done();
-    std::fs::write(shelf.path("ledger.jsonl"), "Dear Sir").unwrap();
-    let refused = shelf.fill("out", &[&ASKED[..], &["--resume"]].concat());
-    assert_eq!(code(&refused), 2);
-    assert!(stderr(&refused).contains("ledger.jsonl exists already"), "{}", stderr(&refused));
-    assert_eq!(std::fs::read(shelf.path("ledger.jsonl")).unwrap(), b"Dear Sir");
+    let path = shelf.path("out/a.audited.xlsx");
+    let made = std::fs::read(&path).unwrap();
+    let resume = [&ASKED[..2], &["--resume"]].concat();
+    let mut otherwise_damaged = made.clone();
+    let middle = otherwise_damaged.len() / 2;
+    otherwise_damaged[middle] ^= 0xff;
+    let other_end = [&made[..middle], b"and more"].concat();
+    for theirs in [
+        password_protected(),
+        b"Dear Sir".to_vec(),
+        b"PK\x03\x04 and so on".to_vec(),
+        otherwise_damaged,
+        other_end,
+    ] {
+        std::fs::write(&path, &theirs).unwrap();
+        let refused = shelf.fill("out", &resume);
+        assert_eq!(code(&refused), 1);
+        let text = stderr(&refused);
+        assert!(text.contains("a.audited.xlsx is not as hence left it"), "{text}");
+        assert!(text.contains("(output-changed)"), "{text}");
+        assert!(std::fs::read(&path).unwrap() == theirs);
+    }
+    // What a full disk leaves: the beginning, or nothing.
+    for length in [0, 1, middle, made.len() - 1] {
+        std::fs::write(&path, &made[..length]).unwrap();
+        let resumed = shelf.fill("out", &resume);
+        assert!(stderr(&resumed).contains("1 filled, 4 filled before"), "{}", stderr(&resumed));
+        assert!(std::fs::read(&path).unwrap() == made);
+    }
+}
+
+#[test]
+fn only_the_ledger_and_summary_of_the_run_are_replaced() {
+    let shelf = done();
+    let (ledger, summary) = (shelf.path("ledger.jsonl"), shelf.path("summary.xlsx"));
+    let lines = std::fs::read_to_string(&ledger).unwrap();
+    let made = Package::open(&summary).unwrap();
+    let app = "docProps/app.xml";
+    let mut bytes = made.part(app).unwrap().unwrap();
+    bytes.extend(b"<!-- saved by another program -->");
+    let edited = Changes { replace: [(app.to_owned(), bytes)].into(), ..Changes::default() };
+    let edited = made.write(&edited).unwrap();
+    // A run over another shelf.
+    let other = Shelf::of(&["other.xlsx"]);
+    assert_eq!(code(&other.fill("out", &ASKED)), 0);
+    let others = |name: &str| std::fs::read(other.path(name)).unwrap();
+    for (path, text) in [
+        (&ledger, b"Dear Sir".to_vec()),
+        (&ledger, (lines.clone() + "my own note\n").into_bytes()),
+        (&ledger, others("ledger.jsonl")),
+        (&summary, edited),
+        (&summary, others("summary.xlsx")),
+        (&summary, lines.clone().into_bytes()),
+    ] {
+        let before = std::fs::read(path).unwrap();
+        std::fs::write(path, &text).unwrap();
+        let refused = shelf.fill("out", &[&ASKED[..], &["--resume"]].concat());
+        assert_eq!(code(&refused), 2);
+        let name = path.file_name().unwrap().to_str().unwrap();
+        assert!(stderr(&refused).contains(&format!("{name} exists already")), "{}", stderr(&refused));
+        assert!(std::fs::read(path).unwrap() == text);
+        std::fs::write(path, before).unwrap();
+    }
+    assert_eq!(code(&shelf.fill("out", &[&ASKED[..], &["--resume"]].concat())), 1, "theirs are replaced");
 }
