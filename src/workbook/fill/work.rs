@@ -154,6 +154,10 @@ impl Work {
             // Formulas left in targets that depend on what is written: what they show is from before.
             self.plan = self.decided(run, stale)?;
         }
+        if run.request.settle {
+            // They get their results before the output is done, and a verdict that differs then is told.
+            self.plan.problems.retain(|problem| problem.code != "awaits-recalculation");
+        }
         self.problems.append(&mut self.plan.problems);
         state(&mut self.appraisal, &self.plan, run.package, run.book)?;
         follow::mark(&mut self.appraisal, stale, written, &mut self.problems);
