@@ -84,6 +84,10 @@ impl Work {
         let mut appraisal =
             resolve(package, book, &Options { roles, basis: stated, base, prices, plan: part })?;
         let mut problems = std::mem::take(&mut appraisal.problems);
+        if request.replace.is_some() {
+            // The old basis is named, so nobody takes the change for a slip.
+            problems.retain(|problem| problem.code != "basis-overridden");
+        }
         // What the workbook itself declares, where it does.
         let own = Options { roles, plan: part, ..Options::default() };
         let told = stated.is_some() || base.is_some() || prices.is_some();
