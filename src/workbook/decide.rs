@@ -88,6 +88,9 @@ pub struct Stand {
 pub struct Bridge {
     /// The net present value that its cell held; none where it was blank, awaits recalculation or has no cell.
     pub held: Option<f64>,
+    /// Whether that is not what its own basis gives: off by more than a millionth, and by more than half of the last digit
+    /// that the cell shows.
+    pub wrong: bool,
     /// On the basis, base and prices that the workbook itself declares; none where it declares none.
     pub declared: Option<Stand>,
     /// On its own basis at the base and in the prices asked for.

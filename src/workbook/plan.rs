@@ -82,6 +82,9 @@ pub fn plan_targets(
             for (i, (write, result)) in writes.into_iter().zip(&results).enumerate() {
                 let held = target.held.get(i).unwrap_or(&Held::Blank);
                 let at = cell_of(&target.at, i);
+                let expected = if let Cached::Number(x) = result { Some(*x) } else { None };
+                let tolerance = expected.map_or(0.0, |x| tolerance::of_cell(target, i, x));
+                let stale = ways.stale.get(&target.at.sheet).is_some_and(|s| s.contains(&at.range.first));
                 let replaceable = match held {
                     Held::Blank | Held::Number(_) | Held::Error(_) => true,
                     Held::Text(text) => is_own_text(text),
@@ -89,10 +92,12 @@ pub fn plan_targets(
                         ways.replace_formulas
                             || own.iter().any(|sheet| text.contains(sheet.as_str()))
                             || ways.written.get(&at.to_string()).is_some_and(|own| same_formula(own, text))
+                            // The analyst's own, in the very words that a fill would write: it stays where it shows what is
+                            // expected, so that what rests on it is compared; else writing it brings its result up to date.
                             || matches!(&write, CellWrite::Formula(new, _) if same_formula(new, text))
+                                && (stale || !shows(held, result, tolerance))
                     }
                 };
-                let expected = if let Cached::Number(x) = result { Some(*x) } else { None };
                 let cell = TargetCell {
                     choice: c,
                     target: t,
@@ -100,11 +105,9 @@ pub fn plan_targets(
                     at,
                     expected,
                     filled: replaceable,
-                    tolerance: expected.map_or(0.0, |x| tolerance::of_cell(target, i, x)),
+                    tolerance,
                     awaits: false,
                 };
-                let stale =
-                    ways.stale.get(&target.at.sheet).is_some_and(|s| s.contains(&cell.at.range.first));
                 let awaits = stale || matches!(held, Held::Formula { value: None, shown: None, .. });
                 let cell = TargetCell { awaits: awaits && !replaceable, ..cell };
                 if replaceable {
@@ -135,6 +138,16 @@ fn same_formula(a: &str, b: &str) -> bool {
         text.chars().filter(|c| !c.is_whitespace() && *c != '$').flat_map(char::to_uppercase).collect()
     };
     fold(a) == fold(b)
+}
+
+/// Whether a formula's stored result is the one expected.
+fn shows(held: &Held, expected: &Cached, tolerance: f64) -> bool {
+    let Held::Formula { value, shown, .. } = held else { return false };
+    match (value, shown, expected) {
+        (Some(found), _, Cached::Number(x)) => (found - x).abs() <= tolerance,
+        (None, Some(shown), Cached::Text(text)) => same_text(shown, text),
+        _ => false,
+    }
 }
 
 /// Whether a text found in a cell says what the text expected says: that there is no number. The analyst may say so
@@ -170,20 +183,17 @@ impl Kept {
             self.texts.push(cell.at.clone());
             return;
         };
-        match (value, shown, expected) {
-            _ if cell.awaits => self.waiting.push(cell.at.clone()),
-            (Some(found), _, Cached::Number(x)) if (found - x).abs() <= cell.tolerance => {
-                self.fresh_tick = true;
-            }
-            (None, Some(shown), Cached::Text(text)) if same_text(shown, text) => self.fresh_tick = true,
-            (value, shown, expected) => {
-                let found = value.map(|x| x.to_string()).or(shown.clone()).unwrap_or_default();
-                let difference = match expected {
-                    Cached::Number(x) => value.map(|found| found - x),
-                    _ => None,
-                };
-                self.differing.push((cell.at.clone(), found, expected.clone(), difference));
-            }
+        if cell.awaits {
+            self.waiting.push(cell.at.clone());
+        } else if shows(held, expected, cell.tolerance) {
+            self.fresh_tick = true;
+        } else {
+            let found = value.map(|x| x.to_string()).or(shown.clone()).unwrap_or_default();
+            let difference = match expected {
+                Cached::Number(x) => value.map(|found| found - x),
+                _ => None,
+            };
+            self.differing.push((cell.at.clone(), found, expected.clone(), difference));
         }
     }
 

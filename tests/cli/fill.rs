@@ -236,6 +236,7 @@ fn a_basis_is_replaced_only_where_it_is_the_old_one() {
     book.is_clean(&[]);
     let done = run(&["fill", book.arg(), "--replace", "3.5% = 3%"]);
     assert_eq!(code(&done), 0, "{}", stderr(&done));
+    assert!(!stderr(&done).contains("basis-overridden"), "the change was asked for: {}", stderr(&done));
     let filled = book.beside("plan.audited.xlsx");
     assert_eq!(number(&filled, "Appraisal", "B4"), 0.03, "the cell held a number, and does so again");
     let (benefits, costs) = by_hand(0.03);

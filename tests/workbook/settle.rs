@@ -76,6 +76,35 @@ fn with_it_every_formula_has_its_result() {
     assert!(compared > 20, "{compared}");
 }
 
+/// The net present value is the analyst's own formula over factors that the fill writes: it waits, unless it is settled.
+#[test]
+fn what_was_settled_awaits_nothing_any_more() {
+    let cells = "B1: 2026\nB2: '5%\nB4: 2026 | 2027 | 2028\nB5: 100 | 0 | 0\nB6: 0 | 60 | 60\n\
+                 B9: =SUMPRODUCT(B6:D6-B5:D5,B7:D7)>0";
+    let small = Small::default().sheet("Plan", cells).names(
+        "hence_base B1, hence_basis B2, hence_years B4:D4, hence_cost_works B5:D5, hence_benefit_floods B6:D6, \
+         hence_factor B7:D7, hence_npv B9",
+    );
+    let waits = |found: &Filled| found.report.problems.iter().any(|p| p.code == "awaits-recalculation");
+    let told = |found: &Filled| {
+        let audit = cells_of(found);
+        audit.iter().any(|text| text.contains("so nothing was compared"))
+    };
+    let open = filled(&small, false);
+    assert!(waits(&open) && told(&open));
+    if soffice().is_none() {
+        return;
+    }
+    let found = filled(&small, true);
+    assert_eq!(found.report.verdict, VERDICT_AGREES);
+    assert!(!waits(&found) && !told(&found), "{:?}", found.report.problems);
+}
+
+fn cells_of(found: &Filled) -> Vec<String> {
+    let text = |stored: Stored| if let Stored::Text(text) = stored { Some(text) } else { None };
+    cells(&found.bytes).into_values().filter_map(|cell| text(cell.value)).collect()
+}
+
 #[test]
 fn a_settled_output_is_made_alike_and_is_filled_again() {
     if soffice().is_none() {

@@ -10,6 +10,7 @@ use hence_workbook::check::{CheckRequest, check};
 use hence_workbook::fill::{FillRequest, fill};
 use hence_workbook::package::Package;
 use hence_workbook::references::Range;
+use hence_workbook::report::Status;
 use hence_workbook::sheets::VERDICT_AGREES;
 
 use crate::libreoffice::cells::{Stored, cells};
@@ -77,6 +78,27 @@ fn every_mistake_is_found_and_nothing_else() {
             assert_eq!(found.len(), 1, "{name}: {found:?}");
         }
     }
+}
+
+/// Ellerby is right, and its formulas read as those that a fill writes: none is written again. Hazel Ford's total leaves out a
+/// year, which such formulas beside it do not hide.
+#[test]
+fn filled_as_it_is_a_right_workbook_is_left_and_a_wrong_total_differs() {
+    let filled = |name: &str| {
+        let package = Package::open(&shelf().join(name)).expect("a package");
+        fill(&package, &FillRequest::default(), &Catalogue::builtin()).expect("filled").report
+    };
+    let right = filled("north/05-ellerby.xlsx");
+    assert_eq!((right.filled, right.verdict.as_str()), (0, VERDICT_AGREES));
+    assert!(right.ticked > 600 && right.awaiting.is_empty(), "{} ticked", right.ticked);
+    assert!(right.problems.is_empty(), "{:?}", right.problems);
+    let wrong = filled("north/08-hazel-ford.xlsx");
+    assert_eq!(wrong.status(), Status::Problems);
+    let of = |code: &str| wrong.problems.iter().filter(|p| p.code == code).count();
+    // The total, and the net present value and the ratio that rest on it.
+    assert_eq!((of("differs"), of("awaits-recalculation")), (3, 0), "{:?}", wrong.problems);
+    let first = wrong.problems.iter().find(|p| p.code == "differs").unwrap();
+    assert!(first.place.to_string().starts_with("Build!B17"), "{}", first.place);
 }
 
 #[test]

@@ -149,6 +149,35 @@ fn shelf() -> Vec<u8> {
     summary::write(&records, Path::new("summary.xlsx")).expect("a workbook")
 }
 
+/// Wrong is what is off by more than a millionth.
+#[test]
+fn a_summary_says_which_held_numbers_were_wrong() {
+    let right = npv(0.035);
+    let wrong = |held: &str| bridge(&dyke("3.5%", held), &on("15%")).wrong;
+    assert!(wrong("20") && wrong(&(right * 1.000_002).to_string()));
+    assert!(!wrong("") && !wrong(&(right * 1.000_000_5).to_string()));
+    let dust = (right * (1.0 + 1e-12)).to_string();
+    let records = [
+        record("wrong.xlsx", reported(&dyke("3.5%", "20"), &on("15%"))),
+        record("right.xlsx", reported(&dyke("3.5%", &dust), &on("15%"))),
+    ];
+    let all = cells(&summary::write(&records, Path::new("summary.xlsx")).expect("a workbook"));
+    let told = texts(&all, "Summary");
+    let lines: Vec<&String> = told.iter().filter(|text| text.contains("held ")).collect();
+    assert!(lines.contains(&&format!("Plan: held 20, right {right:.6}")), "{lines:?}");
+    // The decision of both flips as well.
+    let named = |name: &str| told.iter().filter(|text| *text == name).count();
+    assert_eq!((named("wrong.xlsx"), named("right.xlsx")), (2, 1));
+    let label = all.iter().find(|((sheet, cell), found)| {
+        let text = Stored::Text("Held numbers that were wrong before".to_owned());
+        sheet == "Summary" && cell.col == 0 && found.value == text
+    });
+    let at = Cell { col: 1, ..label.expect("a count").0.1 };
+    assert_eq!(all[&("Summary".to_owned(), at)].value, Stored::Text("1".to_owned()));
+    // What rounding alone moves is shown as nothing.
+    assert_eq!(all[&("Bridge".to_owned(), "G6".parse().unwrap())].value, Stored::Number(0.0));
+}
+
 fn texts(cells: &BTreeMap<(String, Cell), FileCell>, sheet: &str) -> Vec<String> {
     let own = cells.iter().filter(|((name, _), _)| name == sheet);
     own.filter_map(|(_, cell)| if let Stored::Text(text) = &cell.value { Some(text.clone()) } else { None })

@@ -100,7 +100,7 @@ pub(super) fn plan_basis(
                 let message = "the cell held a number and now holds a text, which formulas cannot count with";
                 plan.problems.push(
                     Problem::warning("basis-text", place_of(&choice.basis.at, &choice.basis.from), message)
-                        .hint("look at the formulas that use the cell"),
+                        .hint("--replace-formulas lets hence write the factors; look at other formulas that use the cell"),
                 );
                 CellWrite::Text(basis.to_owned())
             }

@@ -84,6 +84,10 @@ impl Work {
         let mut appraisal =
             resolve(package, book, &Options { roles, basis: stated, base, prices, plan: part })?;
         let mut problems = std::mem::take(&mut appraisal.problems);
+        if request.replace.is_some() {
+            // The old basis is named, so nobody takes the change for a slip.
+            problems.retain(|problem| problem.code != "basis-overridden");
+        }
         // What the workbook itself declares, where it does.
         let own = Options { roles, plan: part, ..Options::default() };
         let told = stated.is_some() || base.is_some() || prices.is_some();
@@ -153,6 +157,10 @@ impl Work {
         if self.plan.cells.iter().any(|cell| !cell.filled && follow::any(stale, &cell.at)) {
             // Formulas left in targets that depend on what is written: what they show is from before.
             self.plan = self.decided(run, stale)?;
+        }
+        if run.request.settle {
+            // They get their results before the output is done, and a verdict that differs then is told.
+            self.plan.problems.retain(|problem| problem.code != "awaits-recalculation");
         }
         self.problems.append(&mut self.plan.problems);
         state(&mut self.appraisal, &self.plan, run.package, run.book)?;

@@ -113,20 +113,26 @@ impl Page<'_> {
         self.input.appraisal.choices.len() as u32
     }
 
+    /// Of one option alone none is the best.
+    fn several(&self) -> bool {
+        self.options() > 1
+    }
+
     /// Net present values under other rates.
     fn rates(&mut self) {
         let over = self.input.appraisal.baseline.map(|i| &self.input.appraisal.choices[i].name);
         let over = over.map(|name| format!(" over {name}")).unwrap_or_default();
-        self.section(
-            "Other rates",
-            &format!(
-                "Net present value{over}. Best is the option with the highest, if no other has as much."
-            ),
-        );
+        let best = if self.several() {
+            " Best is the option with the highest, if no other has as much."
+        } else {
+            ""
+        };
+        self.section("Other rates", &format!("Net present value{over}.{best}"));
         let heading = self.row;
         let names: Vec<&str> =
             self.input.appraisal.choices.iter().map(|choice| choice.name.as_str()).collect();
-        self.headings(&[&["Basis"], names.as_slice(), &["Best", "Checked"]].concat());
+        let ends: &[&str] = if self.several() { &["Best", "Checked"] } else { &["Checked"] };
+        self.headings(&[&["Basis"], names.as_slice(), ends].concat());
         let sides = &self.told.comparison.sides;
         for side in sides.iter().filter(|side| side.why == Why::Declared) {
             self.sheet.text(self.row, 0, Style::Wrapped, format!("Declared: {}", side.basis));
@@ -226,8 +232,19 @@ impl Page<'_> {
         Some(Net { formula: formula.filter(fits), value, gross })
     }
 
-    /// The best option of a row, live, and how its numbers stand.
+    /// The best option of a row where there are several, live, and how its numbers stand.
     fn ends(&mut self, heading: u32, checked: &str, worths: &[Worth]) {
+        let count = self.options();
+        if self.several() {
+            self.best(heading, worths);
+        }
+        let col = count + 1 + u32::from(self.several());
+        self.sheet.text(self.row, col, Style::Result, checked);
+        self.row += 1;
+    }
+
+    /// The best option of a row, live.
+    fn best(&mut self, heading: u32, worths: &[Worth]) {
         let count = self.options();
         let cells =
             |row: u32| absolute(Range { first: Cell { row, col: 1 }, last: Cell { row, col: count } });
@@ -247,8 +264,6 @@ impl Page<'_> {
             _ => "several".to_owned(),
         };
         self.sheet.formula(self.row, count + 1, Style::Instead, text, Cached::Text(best));
-        self.sheet.text(self.row, count + 2, Style::Result, checked);
-        self.row += 1;
     }
 
     /// The cell of a column in the present row.

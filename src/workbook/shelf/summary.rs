@@ -103,6 +103,7 @@ fn summary(records: &[Record]) -> Sheet {
         ("filled, with something wrong in them", count(Status::Problems)),
         ("not filled", count(Status::Failed)),
         ("in which a decision flips", flipped.len()),
+        ("Held numbers that were wrong before", wrong(records).count()),
     ];
     let mut row = 2;
     for (label, n) in lines {
@@ -122,7 +123,8 @@ fn summary(records: &[Record]) -> Sheet {
     row += 2;
     sheet.text(row, 0, Style::Section, "Decisions that flip");
     sheet.text(row, 1, Style::Section, "How");
-    if flipped.is_empty() {
+    let none = flipped.is_empty();
+    if none {
         sheet.text(row + 1, 0, Style::Text, "None.");
     }
     for (record, flips) in flipped {
@@ -130,8 +132,42 @@ fn summary(records: &[Record]) -> Sheet {
         sheet.paragraph(row, 0, 0, Style::Wrapped, &record.input);
         sheet.paragraph(row, 1, 1, Style::Wrapped, flips.join("; "));
     }
+    row += if none { 3 } else { 2 };
+    wrong_before(&mut sheet, row, records);
     sheet.upright();
     sheet
+}
+
+/// The options whose net present value was not what their own basis gives.
+fn wrong(records: &[Record]) -> impl Iterator<Item = (&Record, &OptionReport)> {
+    let options =
+        records.iter().flat_map(|record| record.report.options.iter().map(move |own| (record, own)));
+    options.filter(|(_, option)| option.bridge.wrong)
+}
+
+/// Mistakes that were put right on the way, which a comparison of before and now would not tell.
+fn wrong_before(sheet: &mut Sheet, mut row: u32, records: &[Record]) {
+    sheet.text(row, 0, Style::Section, "Held numbers that were wrong before");
+    sheet.text(row, 1, Style::Section, "Option, net present value held, right on its own basis");
+    let first = row + 1;
+    for (record, option) in wrong(records) {
+        let (Some(held), Some(own)) = (option.bridge.held, option.bridge.declared) else { continue };
+        row += 1;
+        sheet.paragraph(row, 0, 0, Style::Wrapped, &record.input);
+        let text = format!("{}: held {}, right {}", option.called(), plain(held), plain(own.npv));
+        sheet.paragraph(row, 1, 1, Style::Wrapped, text);
+    }
+    if row < first {
+        sheet.text(first, 0, Style::Text, "None.");
+    }
+}
+
+/// A sum to the hundredth; a small one, which may be in millions, to the millionth.
+fn plain(x: f64) -> String {
+    if x.abs() >= 1000.0 {
+        return format!("{x:.2}");
+    }
+    format!("{x:.6}").trim_end_matches('0').trim_end_matches('.').to_owned()
 }
 
 /// Every basis met, once, with the number of workbooks.

@@ -7,6 +7,7 @@ use crate::patch::Cached;
 use crate::problem::Severity;
 use crate::references::Cell;
 use crate::report::{OptionReport, Status};
+use crate::tolerance::RELATIVE;
 use crate::writer::{Sheet, Style};
 
 use super::super::{Record, flips::flips, link};
@@ -45,7 +46,7 @@ pub(super) fn sheet(records: &[Record], place: &Path) -> Sheet {
     }
     sheet.text(0, 0, Style::Title, "From what the workbooks held to what their options come to now");
     let note = "In each workbook's own unit; over its baseline where it has one. A step is the difference of the values \
-                beside it, and blank where one of the two is not known.";
+                beside it, 0 where that is rounding alone, and blank where one of the two is not known.";
     sheet.text(1, 0, Style::Text, note);
     for (col, (text, _)) in HEADINGS.iter().enumerate() {
         sheet.text(TOP, col as u32, Style::Heading, text);
@@ -92,8 +93,13 @@ fn values(sheet: &mut Sheet, row: u32, option: &OptionReport) {
     for (step, pair) in (0..).zip(values.windows(2)) {
         if let [Some(from), Some(to)] = *pair {
             let at = |col| Cell { row, col }.to_string();
-            let formula = format!("{}-{}", at(VALUES + step + 1), at(VALUES + step));
-            sheet.formula(row, STEPS + step, Style::Money, formula, Cached::Number(to - from));
+            let difference = format!("{}-{}", at(VALUES + step + 1), at(VALUES + step));
+            let gross = option.absolute.pv_benefits.abs() + option.absolute.pv_costs.abs();
+            let dust = RELATIVE * gross.max(from.abs()).max(to.abs());
+            // Two digits are enough for a tolerance, and the same on every machine.
+            let formula = format!("IF(ABS({difference})<={dust:.1e},0,{difference})");
+            let moved = if (to - from).abs() <= dust { 0.0 } else { to - from };
+            sheet.formula(row, STEPS + step, Style::Money, formula, Cached::Number(moved));
         }
     }
 }
