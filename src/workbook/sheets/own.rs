@@ -153,7 +153,7 @@ mod tests {
         let long = "The eastern: embankment, all of it";
         let first = SheetNames::choose_for(Some(long), &[]);
         assert_eq!(first.discounting, "Discounting The eastern embankm");
-        assert_eq!(first.sensitivity, "Audit sensitivity The eastern");
+        assert_eq!(first.sensitivity, "Audit sensitivity The eastern e");
         let taken: Vec<String> = first.all().map(str::to_owned).collect();
         let second = SheetNames::choose_for(Some(long), &taken);
         assert_eq!(second.discounting, "Discounting The eastern emban 2");
