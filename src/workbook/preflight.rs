@@ -16,8 +16,8 @@ mod workbook;
 
 pub use sheet::{MAX_EXPANSION, MAX_SHARED};
 pub use stream::MAX_TOKEN;
-pub(crate) use value::ERRORS;
 pub use strings::{MAX_CLAIM, MAX_FORMATS, MAX_STRINGS, MAX_STYLE_TEXT, STRING_COST};
+pub(crate) use value::ERRORS;
 pub use workbook::{MAX_NAMES, MAX_SHEETS};
 
 use stream::Stream;
