@@ -77,7 +77,7 @@ fn attempt(
         may_replace(output, true)?;
         let wanted = Wanted { input: package.file_name(), input_sha256: &hash, order, catalogue };
         match earlier(output, &wanted)? {
-            Earlier::Done(record) => return Ok((Done::Kept(record), None)),
+            Earlier::Done(record) => return Ok((Done::Kept(*record), None)),
             Earlier::Outdated => {}
             Earlier::Unknown(bytes) => unknown = Some(bytes).filter(|_| !order.force),
         }
@@ -118,7 +118,7 @@ impl Wanted<'_> {
 /// What stands at the place of an output.
 enum Earlier {
     /// What this run would make.
-    Done(Record),
+    Done(Box<Record>),
     /// What hence made from something else, not touched since.
     Outdated,
     /// Something else, with its bytes: it may be replaced where it is the beginning of the output, cut short, and else
@@ -131,7 +131,11 @@ fn earlier(output: &Path, wanted: &Wanted<'_>) -> Result<Earlier> {
     let Ok(there) = Package::from_bytes("output", bytes.clone()) else { return Ok(Earlier::Unknown(bytes)) };
     let Some(record) = record_of(&there) else { return Ok(Earlier::Unknown(bytes)) };
     let output_sha256 = Some(sha256(&bytes));
-    Ok(if wanted.is(&record) { Earlier::Done(Record { output_sha256, ..record }) } else { Earlier::Outdated })
+    Ok(if wanted.is(&record) {
+        Earlier::Done(Box::new(Record { output_sha256, ..record }))
+    } else {
+        Earlier::Outdated
+    })
 }
 
 /// That another program saved an output.
