@@ -178,6 +178,18 @@ fn a_summary_says_which_held_numbers_were_wrong() {
     assert_eq!(all[&("Bridge".to_owned(), "G6".parse().unwrap())].value, Stored::Number(0.0));
 }
 
+#[test]
+fn the_largest_stands_on_top_and_labels_clear_of_the_bars() {
+    let package = hence_workbook::package::Package::from_bytes("summary.xlsx", shelf()).expect("a package");
+    for n in 1..=2 {
+        let xml = package.part(&format!("xl/charts/chart{n}.xml")).expect("read").expect("a chart");
+        let xml = String::from_utf8(xml.to_vec()).expect("text");
+        for part in ["<c:orientation val=\"maxMin\"/>", "<c:tickLblPos val=\"low\"/>"] {
+            assert!(xml.contains(part), "{part} in {xml}");
+        }
+    }
+}
+
 /// 100 now for 150 or for 103.51 in a year: at 3.5% worth 44.9 and 0.01.
 #[test]
 fn shares_of_next_to_nothing_are_left_out() {

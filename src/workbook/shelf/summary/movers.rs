@@ -1,5 +1,6 @@
 //! The options that move most, with a chart of each measure.
 
+use crate::graft::ChartFinish;
 use crate::references::{Cell, Range, SheetRange};
 use crate::report::OptionReport;
 use crate::writer::{Chart, ChartKind, Series, Sheet, Style};
@@ -61,6 +62,16 @@ pub(super) fn sheet(records: &[Record]) -> Option<Sheet> {
         part(&mut sheet, 3, "By share of the value before", &movers, Mover::share, (SHARE, "Change, share"));
     part(&mut sheet, row, "By amount", &movers, Mover::change, (3, "Change"));
     Some(sheet)
+}
+
+/// What the charts still lack, by their order.
+pub(super) fn finishes() -> [ChartFinish; 2] {
+    [("By share of the value before", "0%"), ("By amount", "#,##0")].map(|(title, format)| ChartFinish {
+        title: Some(title.to_owned()),
+        y_format: Some(format.to_owned()),
+        tornado: true,
+        ..ChartFinish::default()
+    })
 }
 
 fn before(option: &OptionReport) -> Option<f64> {
