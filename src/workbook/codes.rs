@@ -88,7 +88,7 @@ pub const CODES: &[Code] = codes! {
         "long-token": "A part holds a tag or a text longer than hence reads.",
         "memory-limit": "Reading and filling the workbook takes more memory than a workbook may.",
         "missing-part": "The package lacks a part that every workbook has.",
-        "no-libreoffice": "--settle needs LibreOffice, which is not installed.",
+        "no-libreoffice": "LibreOffice, which --settle needs, is not installed.",
         "not-a-package": "The file is not a zip package, so it is not an .xlsx workbook.",
         "not-a-workbook": "The file is a package, but not one of a workbook.",
         "not-settled": "LibreOffice did not compute the results that --settle asks for.",

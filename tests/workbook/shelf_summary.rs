@@ -178,6 +178,38 @@ fn a_summary_says_which_held_numbers_were_wrong() {
     assert_eq!(all[&("Bridge".to_owned(), "G6".parse().unwrap())].value, Stored::Number(0.0));
 }
 
+#[test]
+fn the_largest_stands_on_top_and_labels_clear_of_the_bars() {
+    let package = hence_workbook::package::Package::from_bytes("summary.xlsx", shelf()).expect("a package");
+    for n in 1..=2 {
+        let xml = package.part(&format!("xl/charts/chart{n}.xml")).expect("read").expect("a chart");
+        let xml = String::from_utf8(xml.to_vec()).expect("text");
+        for part in ["<c:orientation val=\"maxMin\"/>", "<c:tickLblPos val=\"low\"/>"] {
+            assert!(xml.contains(part), "{part} in {xml}");
+        }
+    }
+}
+
+/// 100 now for 150 or for 103.51 in a year: at 3.5% worth 44.9 and 0.01.
+#[test]
+fn shares_of_next_to_nothing_are_left_out() {
+    let option = |later: f64| format!("B4: 2026 | 2027\nB5: 100 | 0\nB6: 0 | {later}");
+    let names = "hence_years B4:C4, hence_cost_works B5:C5, hence_benefit_use B6:C6, hence_npv B9";
+    let small = Small::default()
+        .sheet("In", "B1: 2026\nB2: '3.5%")
+        .names("hence_base B1, hence_basis B2")
+        .sheet("Wall", &option(150.0))
+        .own_names(names)
+        .sheet("Pumps", &option(103.51))
+        .own_names(names);
+    let records = [record("east/ends.xlsx", reported(&small, &on("5%")))];
+    let all = cells(&summary::write(&records, Path::new("summary.xlsx")).expect("a workbook"));
+    let told = texts(&all, "Largest movers");
+    let named = |name: &str| told.iter().filter(|text| *text == name).count();
+    // By share and by amount; by amount alone.
+    assert_eq!((named("east/ends.xlsx: Wall"), named("east/ends.xlsx: Pumps")), (2, 1), "{told:?}");
+}
+
 fn texts(cells: &BTreeMap<(String, Cell), FileCell>, sheet: &str) -> Vec<String> {
     let own = cells.iter().filter(|((name, _), _)| name == sheet);
     own.filter_map(|(_, cell)| if let Stored::Text(text) = &cell.value { Some(text.clone()) } else { None })

@@ -4,8 +4,9 @@ use std::path::Path;
 
 use hence_core::CAUTION;
 
+use crate::graft::finish_chart;
 use crate::model::Workbook;
-use crate::package::Package;
+use crate::package::{Changes, Package};
 use crate::problem::{Problem, Result, Severity};
 use crate::report::{OptionReport, Status};
 use crate::writer::{self, Sheet, Style};
@@ -53,7 +54,20 @@ pub fn write(records: &[Record], place: &Path) -> Result<Vec<u8>> {
     ));
     sheets.extend(awaiting(records));
     let inputs = records.iter().map(|record| record.input.clone()).collect();
-    sealed_summary(writer::workbook(&sheets, &[])?, inputs)
+    sealed_summary(finished(writer::workbook(&sheets, &[])?)?, inputs)
+}
+
+/// The charts with the largest on top and their labels clear of the bars.
+fn finished(bytes: Vec<u8>) -> Result<Vec<u8>> {
+    let package = Package::from_bytes("summary.xlsx", bytes)?;
+    let mut changes = Changes::default();
+    for (n, finish) in (1..).zip(movers::finishes()) {
+        let part = format!("xl/charts/chart{n}.xml");
+        if let Some(xml) = package.part(&part)? {
+            changes.replace.insert(part, finish_chart(&xml, &finish)?);
+        }
+    }
+    package.write(&changes)
 }
 
 /// Formulas that show nothing until a spreadsheet program opens the output; no sheet where there are none.

@@ -28,8 +28,8 @@ const HEADINGS: [(&str, f64); 18] = [
     ("Rank before", 8.0),
     ("Rank now", 8.0),
     ("Ranked by", 18.0),
-    ("Its own basis", 40.0),
-    ("Valued on", 40.0),
+    ("Its own basis", 26.0),
+    ("Valued on", 26.0),
     ("Decisions that flip", 60.0),
     ("Warnings", 10.0),
 ];
@@ -62,7 +62,7 @@ pub(super) fn sheet(records: &[Record], place: &Path) -> Sheet {
             values(&mut sheet, row, option);
             standing(&mut sheet, row, option);
             if i == 0 {
-                sheet.text(row, 16, Style::Text, &flips);
+                sheet.paragraph(row, 16, 16, Style::Wrapped, &flips);
                 sheet.number(row, 17, Style::Year, warnings as f64);
             }
         }
@@ -119,6 +119,6 @@ fn standing(sheet: &mut Sheet, row: u32, option: &OptionReport) {
         }
     }
     sheet.text(row, 13, Style::Text, option.decide.words());
-    sheet.text(row, 14, Style::Text, basis(option, false));
-    sheet.text(row, 15, Style::Text, basis(option, true));
+    sheet.paragraph(row, 14, 14, Style::Wrapped, basis(option, false));
+    sheet.paragraph(row, 15, 15, Style::Wrapped, basis(option, true));
 }
