@@ -121,11 +121,15 @@ fn output(name: &str) -> &'static [u8] {
     found.filled.as_ref().unwrap_or_else(|wrong| panic!("{wrong}"))
 }
 
-/// What `hence check` says: differences, or the problems that keep it from valuing; nothing where all agrees.
+/// What `hence check` says: differences and findings, or the problems that keep it from valuing; nothing where all agrees.
 pub fn found(bytes: &[u8]) -> Vec<String> {
     match check(&package(bytes), &CheckRequest::default(), &catalogue()) {
         Ok(report) if report.agrees() => Vec::new(),
-        Ok(report) => report.differences.iter().map(|d| format!("{} {}", d.place, d.role)).collect(),
+        Ok(report) => {
+            let differences = report.differences.iter().map(|d| format!("{} {}", d.place, d.role));
+            let findings = report.findings.iter().map(|f| format!("{} {}", f.place, f.kind.code()));
+            differences.chain(findings).collect()
+        }
         Err(error) => error.problems().iter().map(ToString::to_string).collect(),
     }
 }

@@ -24,11 +24,12 @@ pub fn add(seen: &Seen, rows: &[Series], findings: &mut Vec<Finding>) -> Result<
     let mut places: Vec<SheetRange> = Vec::new();
     for cells in rest.chunk_by(|a, b| (a.choice, a.target) == (b.choice, b.target)) {
         let role = &seen.target(cells[0]).role;
-        // Without a finding or rounded results there is nothing to follow from.
-        let found = !findings.is_empty() || rounded;
+        // Without a finding or rounded results there is nothing to follow from; an error value follows from no rounding.
+        let told = !findings.is_empty();
         let measured = matches!(role, TargetRole::Payback | TargetRole::Annual);
         let follows = |cell: &Compared| {
-            found && (consequences.follows(cell) || measured && consequences.differs_before(cell.choice))
+            (told || rounded && seen.held(cell).number().is_some())
+                && (consequences.follows(cell) || measured && consequences.differs_before(cell.choice))
         };
         let unexplained =
             |cell: &&&Compared| !(explained.holds(&cell.at) || follows(cell) || places.contains(&cell.at));
