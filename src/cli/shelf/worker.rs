@@ -274,9 +274,9 @@ mod tests {
     fn a_panic_says_no_folders_of_a_machine() {
         for (place, due) in [
             ("src/cli/shelf/child.rs:80:25:", "src/cli/shelf/child.rs:80:25:"),
-            ("/home/ostrey/reader-0.26.1/src/xls.rs:9:1:", "reader-0.26.1/src/xls.rs:9:1:"),
-            ("C:\\Users\\ostrey\\reader-0.26.1\\src\\xls.rs:9:1:", "reader-0.26.1/src/xls.rs:9:1:"),
-            ("/home/ostrey/target/out/made.rs:3:1:", "made.rs:3:1:"),
+            ("/any/folder/reader-0.26.1/src/xls.rs:9:1:", "reader-0.26.1/src/xls.rs:9:1:"),
+            ("C:\\any\\reader-0.26.1\\src\\xls.rs:9:1:", "reader-0.26.1/src/xls.rs:9:1:"),
+            ("/any/target/out/made.rs:3:1:", "made.rs:3:1:"),
             ("/rustc/0ab/library/core/src/slice.rs:1:2:", "core/src/slice.rs:1:2:"),
         ] {
             let line = without_folders(&format!("thread 'main' panicked at {place}"));
